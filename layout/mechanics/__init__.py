@@ -1,0 +1,1 @@
+"""Pure formulas of the trade: star wheel, projection, time and angle, repeats."""
