@@ -1,0 +1,1 @@
+"""The program round the computation: the commands, the HTTP service, the demo."""

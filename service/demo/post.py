@@ -1,0 +1,227 @@
+"""Posts the demo tune to a running service, once for each movement it ships, and keeps what comes back.
+
+Run as `python -m service.demo.post --address http://127.0.0.1:8000 --out demo`. It knows the service only by
+what it promises over HTTP, as any other client would.
+"""
+
+import argparse
+import hashlib
+import json
+import sys
+import urllib.error
+import urllib.request
+from collections import Counter
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from importlib import resources
+from io import BytesIO
+from pathlib import Path
+from typing import Any
+
+import mido
+
+ANSWER_WITHIN_S = 120.0  # as long as service/up lets a worker compute
+INTERRUPTED = 130  # common practice: 128 + the number of SIGINT
+
+# No proxy that the surroundings name: the service is on this machine.
+_opener = urllib.request.build_opener(urllib.request.ProxyHandler({}))
+
+
+class DemoFailedError(Exception):
+    """The demo could not be finished; its text is one line fit to show."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Upload:
+    """What is posted: the bytes of the request and the media type they have."""
+
+    body: bytes
+    media_type: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Tune:
+    """A MIDI file and the moments of its first and last onset, from the start of the file."""
+
+    midi: bytes
+    first_onset_s: float
+    last_onset_s: float
+
+    @property
+    def lasts_s(self) -> float:
+        """Seconds a turn must offer to play all of it: from the first onset to the last."""
+        return self.last_onset_s - self.first_onset_s
+
+
+def read_tune(midi: bytes) -> Tune:
+    """The tune with the moments of its onsets.
+
+    Raises:
+        DemoFailedError: The file holds no note.
+    """
+    onsets_s = []
+    moment_s = 0.0
+    for message in mido.MidiFile(file=BytesIO(midi)):
+        moment_s += message.time
+        if message.type == "note_on" and message.velocity > 0:
+            onsets_s.append(moment_s)
+    if not onsets_s:
+        raise DemoFailedError("the demo tune holds no note")
+    return Tune(midi=midi, first_onset_s=onsets_s[0], last_onset_s=onsets_s[-1])
+
+
+def free_part_s(movement: dict[str, Any]) -> float:
+    """Seconds of music that one turn of a movement offers, its rest sector left out."""
+    free_deg = 360 - movement["before_music_deg"] - movement["after_music_deg"]
+    return float(movement["revolution_s"] * free_deg / 360)
+
+
+def whole_tune(tune: Tune) -> Upload:
+    """The MIDI file as it is."""
+    return Upload(body=tune.midi, media_type="audio/midi")
+
+
+def passage_of(tune: Tune, to_s: float) -> Upload:
+    """The MIDI file with settings that take its first `to_s` seconds, as multipart form-data (RFC 7578)."""
+    settings = {"format": "discwright-settings/1", "passage": {"from_s": 0, "to_s": to_s}}
+    boundary = hashlib.sha256(tune.midi).hexdigest()
+    lines = [
+        f"--{boundary}".encode(),
+        b'Content-Disposition: form-data; name="tune"; filename="tune.mid"',
+        b"Content-Type: audio/midi",
+        b"",
+        tune.midi,
+        f"--{boundary}".encode(),
+        b'Content-Disposition: form-data; name="settings"; filename="settings.json"',
+        b"Content-Type: application/json",
+        b"",
+        json.dumps(settings).encode(),
+        f"--{boundary}--".encode(),
+        b"",
+    ]
+    return Upload(body=b"\r\n".join(lines), media_type=f"multipart/form-data; boundary={boundary}")
+
+
+def fetch(url: str, upload: Upload | None = None) -> bytes:
+    """The body that a URL answers with: to a GET, or to a POST where something is uploaded.
+
+    Raises:
+        DemoFailedError: The service cannot be reached, or answers with an error.
+    """
+    request = urllib.request.Request(url)
+    if upload is not None:
+        request.data = upload.body
+        request.add_header("Content-Type", upload.media_type)
+    try:
+        with _opener.open(request, timeout=ANSWER_WITHIN_S) as answer:
+            return bytes(answer.read())
+    except urllib.error.HTTPError as refusal:
+        said = f"{refusal.code}, {_detail(refusal.read())}"
+        raise DemoFailedError(f"{request.get_method()} {url} was refused: {said}") from refusal
+    except OSError as failure:
+        raise DemoFailedError(f"{url} does not answer: {failure}") from failure
+
+
+def _detail(body: bytes) -> str:
+    """What problem details (RFC 9457) say, on one line; the start of the text where it is something else."""
+    try:
+        problem = json.loads(body)
+        return " ".join(str(problem.get("detail") or problem.get("title")).split())
+    except (ValueError, AttributeError):
+        return " ".join(body.decode(errors="replace").split())[:200]
+
+
+def report(layout: dict[str, Any]) -> list[str]:
+    """Lines that say what a disc keeps of the tune, what it leaves out and why, and what was found."""
+    kept = sum(len(projection["notes"]) for projection in layout["projections"])
+    left_out = layout["left_out"]
+    found = layout["findings"]
+    moved = f"moved by {layout['transposed_semitones']:+g} semitones"
+    lines = [f"kept {kept} of {kept + len(left_out)} notes, {moved}"]
+    if left_out:
+        lines.append(f"left out {len(left_out)}: {_tally(note['reason'] for note in left_out)}")
+    errors = [finding for finding in found if finding["level"] == "error"]
+    lines.append("NOT GOOD TO CUT" if errors else "good to cut")
+    lines += [f"error {finding['code']}: {finding['message']}" for finding in errors]
+    if len(found) > len(errors):
+        lines.append(f"to look at: {_tally(f['code'] for f in found if f['level'] != 'error')}")
+    return lines
+
+
+def _tally(words: Iterable[str]) -> str:
+    return ", ".join(f"{count} {word}" for word, count in sorted(Counter(words).items()))
+
+
+def make_disc(address: str, movement_id: str, tune: Tune, say: Callable[[str], None]) -> dict[str, bytes]:
+    """The files of one disc, by name; everything is fetched before anything is kept.
+
+    Raises:
+        DemoFailedError: The service refuses the tune or one of the files.
+    """
+    movement = json.loads(fetch(f"{address}/v1/movements/{movement_id}"))
+    say(f"{movement_id}: {movement['title']}")
+    upload = whole_tune(tune)
+    free_s = free_part_s(movement)
+    if tune.lasts_s > free_s:
+        say(f"  the tune lasts {tune.lasts_s:.1f} s, one turn plays {free_s:.1f} s: that much of it is taken")
+        upload = passage_of(tune, free_s)
+    made = json.loads(fetch(f"{address}/v1/layouts?movement={movement_id}", upload))
+    for line in report(made["layout"]):
+        say(f"  {line}")
+    return {name: fetch(address + path) for name, path in made["links"].items()}
+
+
+def keep(files: dict[str, bytes], folder: Path) -> None:
+    """Write the files into a folder, made where it does not exist; files of other names stay."""
+    folder.mkdir(parents=True, exist_ok=True)
+    for name, content in files.items():
+        (folder / Path(name).name).write_bytes(content)
+
+
+def post_demo(address: str, out: Path, say: Callable[[str], None]) -> None:
+    """Make the demo disc of every movement the service ships, and say what came of each.
+
+    Args:
+        address: Where the service answers, without a slash at the end.
+        out: The folder that gets one folder per movement.
+        say: Called with each line for the reader.
+
+    Raises:
+        DemoFailedError: The service refuses something, or ships no movement.
+        OSError: A file cannot be written.
+    """
+    tune = read_tune(resources.files("service.demo").joinpath("tune.mid").read_bytes())
+    movements = json.loads(fetch(f"{address}/v1/movements"))["movements"]
+    if not movements:
+        raise DemoFailedError(f"{address} ships no movement")
+    for movement in movements:
+        files = make_disc(address, movement["id"], tune, say)
+        folder = out / movement["id"]
+        keep(files, folder)
+        say(f"  written to {folder}: {', '.join(files)}")
+
+
+def _say(line: str) -> None:
+    sys.stdout.write(f"{line}\n")
+    sys.stdout.flush()
+
+
+def main() -> None:
+    """Read the command line, post the demo, exit with 1 and one line on stderr where it failed."""
+    about = __doc__.partition("\n")[0]
+    parser = argparse.ArgumentParser(prog="python -m service.demo.post", description=about)
+    parser.add_argument("--address", default="http://127.0.0.1:8000", help="where the service answers")
+    parser.add_argument("--out", type=Path, default=Path("demo"), help="the folder for the files")
+    arguments = parser.parse_args()
+    try:
+        post_demo(arguments.address.rstrip("/"), arguments.out, _say)
+    except (DemoFailedError, OSError) as failure:
+        sys.exit(f"demo: {failure}")
+    except (KeyError, TypeError, ValueError) as oddity:
+        sys.exit(f"demo: the service at {arguments.address} answered something unexpected: {oddity!r}")
+    except KeyboardInterrupt:
+        sys.exit(INTERRUPTED)
+
+
+if __name__ == "__main__":
+    main()
