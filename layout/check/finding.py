@@ -1,0 +1,97 @@
+"""What checking gives: findings, each with its number, its limit, its place and its remedy."""
+
+from dataclasses import dataclass
+from enum import StrEnum
+
+
+class Level(StrEnum):
+    """How much a finding matters: an error keeps the cutting files back."""
+
+    ERROR = "error"
+    WARNING = "warning"
+    ADVICE = "advice"
+
+
+class Code(StrEnum):
+    """What was found. The text goes to layout.json and the API as it is."""
+
+    NOTHING_TO_PLAY = "nothing-to-play"
+    MUSIC_TOO_LONG = "music-too-long"
+    WEB_TOO_THIN = "web-too-thin"
+    WEB_TO_RIM = "web-to-rim"
+    WEB_TO_CENTRE_HOLE = "web-to-centre-hole"
+    WEB_TO_FEATURE = "web-to-feature"
+    IN_KEEP_OUT = "in-keep-out"
+    TRACK_OFF_DISC = "track-off-disc"
+    REPEAT_TOO_SOON = "repeat-too-soon"
+    DAMPER_NOT_RECOVERED = "damper-not-recovered"
+    REST_NOT_CLEAR = "rest-not-clear"
+    PLUCK_OUTSIDE_MUSIC = "pluck-outside-music"
+    STAR_HITS_DISC = "star-hits-disc"
+    STAR_NOT_REACHED = "star-not-reached"
+    STEP_TOO_SHORT = "step-too-short"
+    STEP_TOO_LONG = "step-too-long"
+    TIP_IN_BEND = "tip-in-bend"
+    DEPTH_AT_ROOT = "depth-at-root"
+    TOOTH_LEFT_HANGING = "tooth-left-hanging"
+    NEIGHBOUR_FOULED = "neighbour-fouled"
+    OWN_STAR_MISSED = "own-star-missed"
+    CANNOT_FORM = "cannot-form"
+    NO_TOOL = "no-tool"
+    SLIT_TOO_NARROW = "slit-too-narrow"
+    MARGIN_UNSURE = "margin-unsure"
+    # read back from a drawing
+    UNKNOWN_CUT = "unknown-cut"
+    CUT_TWICE = "cut-twice"
+    OFF_TRACK = "off-track"
+    OUT_OF_SHAPE = "out-of-shape"
+    BLANK_DIFFERS = "blank-differs"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Place:
+    """Where on the disc; what does not apply is left at its default.
+
+    Attributes:
+        tracks: Track numbers, from 1.
+        projections: Indices into layout.json's projections.
+        radius_mm: Distance from the centre.
+        angle_deg: Angle on the disc seen from the label side.
+        sounds_s: Moment of the music.
+    """
+
+    tracks: tuple[int, ...] = ()
+    projections: tuple[int, ...] = ()
+    radius_mm: float | None = None
+    angle_deg: float | None = None
+    sounds_s: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Finding:
+    """One thing that is wrong, or near to wrong, with a disc.
+
+    Attributes:
+        code: What.
+        level: How much it matters.
+        message: One sentence for a person, with numbers and units.
+        measured: The number found, in `unit`; None where nothing is measured.
+        limit: The number it is held against, in `unit`; None where there is none.
+        unit: "mm", "s", "deg" or "".
+        at: Where.
+        remedy: What a person can do about it.
+    """
+
+    code: Code
+    level: Level
+    message: str
+    measured: float | None
+    limit: float | None
+    unit: str
+    at: Place
+    remedy: str
+
+
+def stands(findings: tuple[Finding, ...]) -> bool:
+    """Whether an error-level finding stands, so that the disc is not good to cut."""
+    return any(finding.level is Level.ERROR for finding in findings)

@@ -1,0 +1,101 @@
+"""What planning the cut gives: two drawings, as drawn, in cutting order.
+
+Coordinates are the drawing's own: origin at the disc centre, millimetres, mirrored in Y where the
+cutter draws from the star side.
+"""
+
+from dataclasses import dataclass
+from typing import Literal
+
+from layout.mechanics.arrays import FloatArray, IntArray
+
+LayerName = Literal["SLITS", "SLOTS", "HITS", "HOLES", "RIM", "LEADS", "MARKS", "AFTER_FORMING", "FOLDS", "TRACKS"]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Outlines:
+    """Polylines of one make, in cutting order.
+
+    Attributes:
+        layer: Our layer name.
+        points_mm: Shape (n, k, 2). Vertices as drawn; the cut is pierced and starts at the first.
+        bulges: Shape (k,). DXF bulge of the piece that starts at each vertex, as drawn.
+        closed: Whether the last vertex joins the first.
+    """
+
+    layer: LayerName
+    points_mm: FloatArray
+    bulges: FloatArray
+    closed: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Circles:
+    """Circles. centres_mm: shape (n, 2); radius_mm: shape (n,)."""
+
+    layer: LayerName
+    centres_mm: FloatArray
+    radius_mm: FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Points:
+    """Points, in cutting order. points_mm: shape (n, 2)."""
+
+    layer: LayerName
+    points_mm: FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Lettering:
+    """A line of single-stroke letters on MARKS: what it says, and its open strokes, each (k, 2)."""
+
+    layer: LayerName
+    text: str
+    strokes_mm: tuple[FloatArray, ...]
+
+
+Entity = Outlines | Circles | Points | Lettering
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Drawing:
+    """One drawing: entities in cutting order, the rim last of what is cut.
+
+    Attributes:
+        entities: What is drawn.
+        comments: Lines for the file's head (DXF group 999, SVG description): what the drawing is,
+            the side it is drawn from, and any warning.
+    """
+
+    entities: tuple[Entity, ...]
+    comments: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class CutPlan:
+    """The disc as it is cut, and the record of it.
+
+    Attributes:
+        title: The tune's title.
+        fingerprint: Of all inputs; the same inputs always give the same.
+        drawn_from: The side the drawings show.
+        not_good: The reason for which the cutting files are given although an error-level finding
+            stands; None for a disc that is good to cut, or whose cutting files are kept back.
+        disc: Only what is cut or marked.
+        record: For reading, never for cutting: the same, and how it looks after forming.
+        order: Shape (n,). Projection indices in cutting order.
+        at_mm: Shape (n, 2). In that order, as drawn: the strike point (press) or the middle of the
+            working edge (laser).
+        tool: The press tool of every hit; "" on a laser.
+    """
+
+    title: str
+    fingerprint: str
+    drawn_from: Literal["label-side", "star-side"]
+    not_good: str | None
+    disc: Drawing
+    record: Drawing
+    order: IntArray
+    at_mm: FloatArray
+    tool: str

@@ -1,0 +1,155 @@
+"""The cutter document: the machine that cuts, its numbers and its layer names."""
+
+from typing import Annotated, Literal, Self
+
+from pydantic import Field, model_validator
+
+from layout.documents.reading import (
+    Identifier,
+    NotNegative,
+    Number,
+    Part,
+    Positive,
+    Title,
+    check_document,
+    parse_json,
+    take_apart,
+)
+
+# Our layer names, each with the colour index (AutoCAD Color Index of the DXF reference) it has
+# unless the cutter maps it. Colours only tell layers apart; shops map them to their own.
+LAYER_COLOURS = {
+    "SLITS": 1,
+    "SLOTS": 30,
+    "HITS": 6,
+    "HOLES": 4,
+    "RIM": 5,
+    "LEADS": 2,
+    "MARKS": 8,
+    "AFTER_FORMING": 3,
+    "FOLDS": 140,
+    "TRACKS": 9,
+}
+SAME_PLACE_MM = 1e-6  # mm; a nanometre, what rounding in a written document may leave
+MOST_TOOLS = 60  # tools; more than a press's magazine holds, keeps a document small
+
+
+class Fold(Part):
+    """How this laser's shop folds a standing projection out of a U-shaped cut."""
+
+    inside_radius_mm: Positive
+    fold_side: Literal["behind", "ahead"]
+    relief_mm: NotNegative
+    slit: Literal["channel", "centre-line"]
+    slit_width_mm: Positive | None = None
+    relief_width_mm: Positive | None = None
+
+    @model_validator(mode="after")
+    def _channel_has_a_width(self) -> Self:
+        if self.slit == "channel" and self.slit_width_mm is None:
+            raise ValueError('slit "channel" needs slit_width_mm')
+        if self.slit == "centre-line" and self.slit_width_mm is not None:
+            raise ValueError('slit "centre-line" is as wide as the kerf; leave slit_width_mm out')
+        if self.slit == "centre-line" and self.relief_width_mm is not None:
+            raise ValueError('slit "centre-line" has no room for relief_width_mm; use a channel')
+        return self
+
+
+class Tool(Part):
+    """A press tool. Its footprint is centred on the strike point, length along the travel.
+
+    A lance cuts three sides of its footprint and forms the tab in the same hit. A slot tool's
+    footprint has round ends. `edge_ahead_mm` is how far the working edge lies ahead of the
+    strike point, in the direction of travel (negative: behind it).
+    """
+
+    tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$")]
+    title: Title
+    makes: Literal["lance", "slot"]
+    footprint_length_mm: Positive
+    footprint_width_mm: Positive
+    edge_ahead_mm: Number
+    tab_width_mm: Positive | None = None
+    tab_depth_mm: Positive | None = None
+
+    @model_validator(mode="after")
+    def _fields_of_its_kind(self) -> Self:
+        if self.makes == "lance":
+            if self.tab_width_mm is None or self.tab_depth_mm is None:
+                raise ValueError(f"lance tool {self.tool} needs tab_width_mm and tab_depth_mm")
+            if self.footprint_width_mm < self.tab_width_mm:
+                raise ValueError(f"tool {self.tool}: footprint_width_mm is below tab_width_mm")
+        elif self.footprint_length_mm < self.footprint_width_mm:
+            raise ValueError(f"slot tool {self.tool}: footprint_length_mm is below footprint_width_mm")
+        elif abs(self.edge_ahead_mm + self.footprint_length_mm / 2) > SAME_PLACE_MM:
+            # A slot works with its trailing end, and its footprint is centred on the strike point.
+            raise ValueError(f"slot tool {self.tool}: edge_ahead_mm must be minus half of footprint_length_mm")
+        return self
+
+
+class Layer(Part):
+    """The layer name and colour index a cutter wants for one of ours."""
+
+    name: Annotated[str, Field(pattern=r"^[A-Za-z0-9_$-]{1,31}$")]
+    colour: Annotated[int, Field(ge=1, le=255)]
+
+
+class Cutter(Part):
+    """A cutting machine and what it can do to the sheet."""
+
+    format: Literal["discwright-cutter/1"]
+    id: Identifier
+    title: Title
+    kind: Literal["laser", "punch-press"]
+    kerf_mm: NotNegative
+    kerf_compensated: bool = False
+    min_web_mm: Positive
+    min_slot_mm: Positive
+    position_tolerance_mm: NotNegative
+    angle_tolerance_deg: NotNegative = 0.0
+    drawn_from: Literal["label-side", "star-side"]
+    fold: Fold | None = None
+    tools: Annotated[tuple[Tool, ...], Field(max_length=MOST_TOOLS)] = ()
+    layers: dict[str, Layer] = Field(default_factory=dict)
+
+    @model_validator(mode="after")
+    def _parts_of_its_kind(self) -> Self:
+        if self.kind == "punch-press" and self.fold is not None:
+            raise ValueError("a punch press lances; leave fold out")
+        if self.kind == "laser" and self.tools:
+            raise ValueError("a laser has no tools; leave tools out")
+        if self.kerf_compensated:
+            raise ValueError("kerf_compensated true is not offered: outlines are finished edges; set it to false")
+        if self.fold is not None and self.fold.slit == "centre-line" and self.kerf_mm == 0:
+            raise ValueError('slit "centre-line" needs kerf_mm above 0')
+        numbers = [tool.tool for tool in self.tools]
+        if len(set(numbers)) != len(numbers):
+            raise ValueError("two tools have the same name")
+        return self
+
+    @model_validator(mode="after")
+    def _layers_stay_apart(self) -> Self:
+        unknown = sorted(set(self.layers) - set(LAYER_COLOURS))
+        if unknown:
+            raise ValueError(f"layers: no layer of ours is called {unknown[0]!r}; ours are {', '.join(LAYER_COLOURS)}")
+        seen: dict[str, str] = {}
+        for ours in LAYER_COLOURS:
+            theirs = self.layer(ours).name.casefold()
+            if theirs in seen:
+                raise ValueError(f"layers: {seen[theirs]} and {ours} would share the layer {self.layer(ours).name!r}")
+            seen[theirs] = ours
+        return self
+
+    def layer(self, ours: str) -> Layer:
+        """The layer name and colour this cutter wants for one of our layer names."""
+        return self.layers.get(ours) or Layer(name=ours, colour=LAYER_COLOURS[ours])
+
+
+def read_cutter(text: str | bytes) -> Cutter:
+    """A cutter document.
+
+    Raises:
+        DocumentError: Not JSON, or not a valid cutter; names every fault found.
+    """
+    plain, _ = take_apart(parse_json(text, document="cutter"))
+    return check_document(Cutter, plain, document="cutter")

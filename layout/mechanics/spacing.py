@@ -1,0 +1,164 @@
+"""How near two projections may come: on one track, and on two neighbouring ones.
+
+On one track three things keep working edges apart: the star wheel must finish its step, the
+damper must have left the tooth quiet, and metal must remain between the openings. On two tracks
+only the metal counts. All are angles on the disc, so they hold at any speed.
+"""
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from layout.documents.movement import Movement
+from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.projection import Pattern
+from layout.mechanics.turning import FULL_TURN_RAD, Turning
+
+_HALVINGS = 50  # of an interval under one turn: ends below 1e-14 rad, the grain of a double
+_SCAN_STEPS = 96  # places tried over the stretch where two openings can pass each other
+
+WebAt = Callable[[FloatArray], FloatArray]
+Reason = Literal["wheel-still-stepping", "damper-not-recovered", "web"]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Spacing:
+    """Least angles between working edges.
+
+    Attributes:
+        wheel_rad: Shape (tracks,). The star wheel's step: arc/(r·cos δ).
+        damper_rad: Shape (tracks,). The damper's recovery at the fastest turn; 0 where undamped.
+        web_rad: Shape (tracks,). Where the openings' web reaches the cutter's least.
+        between: Pairs of tracks whose openings may come too near.
+    """
+
+    wheel_rad: FloatArray
+    damper_rad: FloatArray
+    web_rad: FloatArray
+    between: tuple["TooNear", ...]
+
+    @property
+    def least_rad(self) -> FloatArray:
+        """Shape (tracks,). The least angle between two working edges of one track."""
+        return np.maximum(np.maximum(self.wheel_rad, self.damper_rad), self.web_rad)
+
+    def reason(self, track_index: int, apart_rad: float) -> Reason:
+        """What forbids two working edges of a track this far apart; the wheel first, then the damper."""
+        if apart_rad < self.wheel_rad[track_index]:
+            return "wheel-still-stepping"
+        return "damper-not-recovered" if apart_rad < self.damper_rad[track_index] else "web"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class TooNear:
+    """Two tracks, and the angles from the inner's working edge to the outer's at which their web is too thin."""
+
+    inner_index: int
+    outer_index: int
+    from_rad: float
+    to_rad: float
+
+
+def spacing_of(movement: Movement, turning: Turning, pattern: Pattern, min_web_mm: float) -> Spacing:
+    """The spacing rules of a movement whose projections have this pattern.
+
+    Args:
+        movement: Its damper recovery is judged at its fastest turn.
+        turning: The movement's turning.
+        pattern: The projections' pattern.
+        min_web_mm: Least metal between two openings.
+    """
+    damped = {tooth.track for tooth in movement.teeth if tooth.damped and tooth.usable}
+    recovery_rad = FULL_TURN_RAD * movement.damper_recovery_s / movement.fastest_revolution_s
+    return Spacing(
+        wheel_rad=frozen_floats(turning.engagement_arc_mm / (turning.radius_mm * np.cos(turning.row_rad))),
+        damper_rad=frozen_floats(recovery_rad if track.track in damped else 0.0 for track in movement.tracks),
+        web_rad=frozen_floats(_web_angles_rad(turning, pattern, min_web_mm)),
+        between=_too_near_pairs(turning, pattern, min_web_mm),
+    )
+
+
+def core_geometries(points_mm: FloatArray) -> NDArray[np.object_]:
+    """Shapely polygons (three points or more) or lines (two points) from shape (n, k, 2)."""
+    if points_mm.shape[1] > 2:  # noqa: PLR2004 - two points make a line
+        return np.asarray(shapely.polygons(points_mm), dtype=np.object_)
+    return np.asarray(shapely.linestrings(points_mm), dtype=np.object_)
+
+
+def webs_mm(turning: Turning, pattern: Pattern, first: FloatArray, second: FloatArray) -> FloatArray:
+    """Metal between pairs of openings; negative or zero where they overlap.
+
+    Args:
+        turning: For the direction of travel.
+        pattern: The openings' pattern.
+        first: Shape (n, 2). Radius and working-edge angle of one opening of each pair.
+        second: Shape (n, 2). The same of the other.
+    """
+    one = core_geometries(on_disc_mm(pattern.core_points_mm, first[:, 0], first[:, 1], turning.direction))
+    two = core_geometries(on_disc_mm(pattern.core_points_mm, second[:, 0], second[:, 1], turning.direction))
+    return np.asarray(shapely.distance(one, two)) - 2 * pattern.core_round_mm
+
+
+def _web_angles_rad(turning: Turning, pattern: Pattern, min_web_mm: float) -> FloatArray:
+    radius_mm = turning.radius_mm
+    low = np.zeros(len(radius_mm))
+    high = np.full(len(radius_mm), math.pi)
+    here = np.column_stack([radius_mm, low])
+    for _ in range(_HALVINGS):
+        middle = (low + high) / 2
+        enough = webs_mm(turning, pattern, here, np.column_stack([radius_mm, middle])) >= min_web_mm
+        high, low = np.where(enough, middle, high), np.where(enough, low, middle)
+    return high
+
+
+def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tuple[TooNear, ...]:
+    across_mm = float(np.ptp(pattern.core_points_mm[:, 1])) + 2 * pattern.core_round_mm
+    along_mm = float(np.ptp(pattern.core_points_mm[:, 0])) + 2 * pattern.core_round_mm
+    pairs = []
+    for inner in range(len(turning.radius_mm)):
+        for outer in range(inner + 1, len(turning.radius_mm)):
+            gap_mm = turning.radius_mm[outer] - turning.radius_mm[inner] - across_mm
+            # Straight openings on a circle lean outwards by their length squared over twice the radius.
+            if gap_mm - along_mm**2 / turning.radius_mm[inner] >= min_web_mm:
+                break
+            found = _too_near(turning, pattern, min_web_mm, (inner, outer))
+            if found is not None:
+                pairs.append(found)
+    return tuple(pairs)
+
+
+def _too_near(turning: Turning, pattern: Pattern, min_web_mm: float, pair: tuple[int, int]) -> TooNear | None:
+    inner_mm, outer_mm = (float(turning.radius_mm[index]) for index in pair)
+    along_mm = float(np.ptp(pattern.core_points_mm[:, 0])) + 2 * pattern.core_round_mm + min_web_mm
+    reach_rad = min(2 * along_mm / inner_mm, math.pi)
+
+    def web_mm(apart_rad: FloatArray) -> FloatArray:
+        first = np.column_stack([np.full(len(apart_rad), inner_mm), np.zeros(len(apart_rad))])
+        second = np.column_stack([np.full(len(apart_rad), outer_mm), apart_rad])
+        return webs_mm(turning, pattern, first, second)
+
+    scan = np.linspace(-reach_rad, reach_rad, _SCAN_STEPS)
+    bad = np.flatnonzero(web_mm(scan) < min_web_mm)
+    if not len(bad):
+        return None
+    ends = [
+        _edge_rad(web_mm, min_web_mm, float(scan[max(bad[0] - 1, 0)]), float(scan[bad[0]])),
+        _edge_rad(web_mm, min_web_mm, float(scan[min(bad[-1] + 1, len(scan) - 1)]), float(scan[bad[-1]])),
+    ]
+    return TooNear(inner_index=pair[0], outer_index=pair[1], from_rad=min(ends), to_rad=max(ends))
+
+
+def _edge_rad(web_mm: WebAt, min_web_mm: float, good_rad: float, bad_rad: float) -> float:
+    for _ in range(_HALVINGS):
+        middle = (good_rad + bad_rad) / 2
+        if float(web_mm(np.array([middle]))[0]) >= min_web_mm:
+            good_rad = middle
+        else:
+            bad_rad = middle
+    return good_rad

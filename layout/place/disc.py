@@ -1,0 +1,41 @@
+"""What placing gives: the disc, as working edges on tracks."""
+
+from dataclasses import dataclass
+
+from layout.documents.cutter import Cutter
+from layout.documents.movement import Movement
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.projection import Pattern
+from layout.mechanics.turning import Turning
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Disc:
+    """Projections on a movement's disc, as one cutter makes them.
+
+    Attributes:
+        movement: The movement the disc is for.
+        cutter: The cutter that makes it.
+        turning: The movement's turning in numbers.
+        pattern: The flat pattern every projection has.
+        track_index: Shape (n,). Place of each projection's track in movement.tracks, from 0.
+        edge_angle_rad: Shape (n,). α, the working edge's angle on the disc seen from the label side,
+            in [0, 2π).
+    """
+
+    movement: Movement
+    cutter: Cutter
+    turning: Turning
+    pattern: Pattern
+    track_index: IntArray
+    edge_angle_rad: FloatArray
+
+    @property
+    def projection_count(self) -> int:
+        """How many projections the disc has."""
+        return len(self.track_index)
+
+    @property
+    def radius_mm(self) -> FloatArray:
+        """Shape (n,). Track radius of each projection."""
+        return self.turning.radius_mm[self.track_index]
