@@ -1,0 +1,37 @@
+"""Everything known of one layout: what the walk gives and the writers tell."""
+
+from dataclasses import dataclass
+
+from layout.arrange.arrangement import Arrangement
+from layout.check.finding import Finding, stands
+from layout.place.disc import Disc
+from layout.play.plucks import Plucks
+from layout.read.score import Score
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class LaidOut:
+    """A tune laid out on a disc.
+
+    Attributes:
+        title: Of the tune: the settings', else the score's, else "untitled tune".
+        fingerprint: Sixteen hex digits of the inputs' SHA-256; the same inputs give the same.
+        score: The notes read.
+        arrangement: Which of them the disc plays.
+        disc: Where its projections are; projection i is pluck i of the arrangement.
+        plucks: When they sound; pluck i is projection i.
+        findings: What is wrong or near to wrong.
+    """
+
+    title: str
+    fingerprint: str
+    score: Score
+    arrangement: Arrangement
+    disc: Disc
+    plucks: Plucks
+    findings: tuple[Finding, ...]
+
+    @property
+    def good_to_cut(self) -> bool:
+        """Whether no error-level finding stands."""
+        return not stands(self.findings)
