@@ -1,0 +1,215 @@
+import json
+import threading
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from email import message_from_bytes
+from http.server import BaseHTTPRequestHandler, ThreadingHTTPServer
+from io import BytesIO
+from pathlib import Path
+
+import mido
+import pytest
+
+from service.demo import post
+
+# 40 s a turn, 20 deg before and 14 deg after the music: 40 * 326 / 360 = 36.222 s free.
+SHORT_TURN = {"id": "short-9", "title": "Short", "revolution_s": 40, "before_music_deg": 20, "after_music_deg": 14}
+LONG_TURN = SHORT_TURN | {"id": "long-9", "title": "Long", "revolution_s": 90}
+FREE_PART_S = 40 * 326 / 360
+
+LAYOUT = {
+    "transposed_semitones": -3,
+    "projections": [{"notes": [0, 1]}, {"notes": [2]}],
+    "left_out": [{"note": 3, "reason": "web"}, {"note": 4, "reason": "no-such-pitch"}, {"note": 5, "reason": "web"}],
+    "findings": [{"code": "web-thin", "level": "warning", "message": "thin"}],
+}
+
+
+@dataclass
+class StandIn:
+    """A service that keeps what it is sent and answers from a table."""
+
+    address: str = ""
+    movements: list[dict[str, object]] = field(default_factory=list)
+    links: dict[str, str] = field(default_factory=lambda: {"disc.dxf": "/files/1", "hits.csv": "/files/2"})
+    refuses: str = ""
+    posted: list[tuple[str, str, bytes]] = field(default_factory=list)
+
+    def answer(self, path: str) -> tuple[int, bytes]:
+        if self.refuses and path.startswith(self.refuses):
+            return 422, json.dumps({"title": "Not good to cut", "detail": "the tune\nis bad"}).encode()
+        if path == "/v1/movements":
+            return 200, json.dumps({"movements": self.movements}).encode()
+        if path.startswith("/v1/movements/"):
+            [movement] = [m for m in self.movements if path.endswith(f"/{m['id']}")]
+            return 200, json.dumps(movement).encode()
+        if path.startswith("/v1/layouts"):
+            return 201, json.dumps({"layout": LAYOUT, "links": self.links, "good_to_cut": True}).encode()
+        return 200, f"file {path}".encode()
+
+
+@pytest.fixture
+def stand_in() -> Iterator[StandIn]:
+    service = StandIn()
+
+    class Handler(BaseHTTPRequestHandler):
+        def do_GET(self) -> None:
+            status, body = service.answer(self.path)
+            self.send_response(status)
+            self.end_headers()
+            self.wfile.write(body)
+
+        def do_POST(self) -> None:
+            body = self.rfile.read(int(self.headers["Content-Length"]))
+            service.posted.append((self.path, self.headers["Content-Type"], body))
+            self.do_GET()
+
+        def log_message(self, *_: object) -> None:
+            pass
+
+    with ThreadingHTTPServer(("127.0.0.1", 0), Handler) as server:
+        service.address = f"http://127.0.0.1:{server.server_address[1]}"
+        thread = threading.Thread(target=server.serve_forever)
+        thread.start()
+        yield service
+        server.shutdown()
+        thread.join()
+
+
+def midi_with_onsets_at(*onsets_s: int) -> bytes:
+    track = mido.MidiTrack()
+    now_s = 0
+    for onset_s in onsets_s:
+        # 480 ticks a beat, 120 beats a minute: 960 ticks a second
+        track.append(mido.Message("note_on", note=60, time=960 * (onset_s - now_s)))
+        track.append(mido.Message("note_off", note=60, time=0))
+        now_s = onset_s
+    track.append(mido.Message("note_on", note=60, velocity=0, time=960 * 100))
+    kept = BytesIO()
+    mido.MidiFile(tracks=[track], ticks_per_beat=480).save(file=kept)
+    return kept.getvalue()
+
+
+def test_a_tune_lasts_from_its_first_onset_to_its_last() -> None:
+    tune = post.read_tune(midi_with_onsets_at(2, 30, 61))
+
+    assert (tune.first_onset_s, tune.last_onset_s) == pytest.approx((2.0, 61.0))
+    assert tune.lasts_s == pytest.approx(59.0)
+
+
+def test_a_tune_without_notes_cannot_be_posted() -> None:
+    with pytest.raises(post.DemoFailedError, match="holds no note"):
+        post.read_tune(midi_with_onsets_at())
+
+
+def test_a_tune_that_fits_the_turn_is_posted_as_it_is(stand_in: StandIn) -> None:
+    stand_in.movements = [SHORT_TURN]
+    midi = midi_with_onsets_at(0, 36)
+
+    post.make_disc(stand_in.address, "short-9", post.read_tune(midi), lambda _: None)
+
+    assert stand_in.posted == [("/v1/layouts?movement=short-9", "audio/midi", midi)]
+
+
+def test_a_tune_longer_than_the_turn_is_posted_with_a_passage_of_one_free_turn(stand_in: StandIn) -> None:
+    stand_in.movements = [SHORT_TURN]
+    midi = midi_with_onsets_at(0, 37)
+    said: list[str] = []
+
+    post.make_disc(stand_in.address, "short-9", post.read_tune(midi), said.append)
+
+    [(path, media_type, body)] = stand_in.posted
+    # read by the mail library, which knows nothing of the writer
+    form = message_from_bytes(b"Content-Type: " + media_type.encode() + b"\r\n\r\n" + body)
+    parts = {part.get_param("name", header="content-disposition"): part for part in form.walk()}
+    assert path == "/v1/layouts?movement=short-9"
+    assert parts["tune"].get_payload(decode=True) == midi
+    assert parts["tune"].get_content_type() == "audio/midi"
+    settings = json.loads(str(parts["settings"].get_payload()))
+    assert settings["format"] == "discwright-settings/1"
+    assert settings["passage"] == {"from_s": 0, "to_s": pytest.approx(FREE_PART_S)}
+    assert "  the tune lasts 37.0 s, one turn plays 36.2 s: that much of it is taken" in said
+
+
+def test_the_report_counts_what_is_kept_and_why_the_rest_is_left_out() -> None:
+    assert post.report(LAYOUT) == [
+        "kept 3 of 6 notes, moved by -3 semitones",
+        "left out 3: 1 no-such-pitch, 2 web",
+        "good to cut",
+        "to look at: 1 web-thin",
+    ]
+
+
+def test_the_report_says_what_stands_against_cutting() -> None:
+    fault = {"code": "web-thin", "level": "error", "message": "0.1 mm of web"}
+
+    lines = post.report(LAYOUT | {"left_out": [], "findings": [fault]})
+
+    assert lines == [
+        "kept 3 of 3 notes, moved by -3 semitones",
+        "NOT GOOD TO CUT",
+        "error web-thin: 0.1 mm of web",
+    ]
+
+
+def test_the_demo_keeps_the_files_of_every_movement_in_a_folder_of_its_own(stand_in: StandIn, tmp_path: Path) -> None:
+    stand_in.movements = [SHORT_TURN, LONG_TURN]
+    said: list[str] = []
+
+    post.post_demo(stand_in.address, tmp_path, said.append)
+
+    kept = {str(path.relative_to(tmp_path)): path.read_text() for path in tmp_path.rglob("*.*")}
+    assert kept == {
+        "short-9/disc.dxf": "file /files/1",
+        "short-9/hits.csv": "file /files/2",
+        "long-9/disc.dxf": "file /files/1",
+        "long-9/hits.csv": "file /files/2",
+    }
+    assert f"  written to {tmp_path / 'long-9'}: disc.dxf, hits.csv" in said
+
+
+def test_a_file_name_with_a_path_in_it_stays_in_its_folder(tmp_path: Path) -> None:
+    post.keep({"../outside.txt": b"x"}, tmp_path / "inside")
+
+    assert [path.name for path in (tmp_path / "inside").iterdir()] == ["outside.txt"]
+
+
+@pytest.mark.parametrize("refused", ["/v1/layouts", "/files/2"])
+def test_a_refusal_is_told_on_one_line_and_nothing_is_kept(stand_in: StandIn, tmp_path: Path, refused: str) -> None:
+    stand_in.movements = [SHORT_TURN]
+    stand_in.refuses = refused
+
+    with pytest.raises(post.DemoFailedError, match=rf"{refused}\S* was refused: 422, the tune is bad$"):
+        post.post_demo(stand_in.address, tmp_path, lambda _: None)
+
+    assert list(tmp_path.iterdir()) == []
+
+
+def test_a_service_that_ships_no_movement_is_a_failure(stand_in: StandIn, tmp_path: Path) -> None:
+    with pytest.raises(post.DemoFailedError, match="ships no movement"):
+        post.post_demo(stand_in.address, tmp_path, lambda _: None)
+
+
+def test_a_proxy_named_by_the_surroundings_is_not_asked(stand_in: StandIn, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("http_proxy", "http://127.0.0.1:1")
+    stand_in.movements = [SHORT_TURN]
+
+    assert json.loads(post.fetch(f"{stand_in.address}/v1/movements")) == {"movements": [SHORT_TURN]}
+
+
+def test_the_command_ends_with_one_line_where_nothing_answers(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    # port 1 is below the ports that programs may take
+    monkeypatch.setattr("sys.argv", ["post", "--address", "http://127.0.0.1:1", "--out", str(tmp_path)])
+
+    with pytest.raises(SystemExit, match=r"^demo: http://127\.0\.0\.1:1/v1/movements does not answer: [^\n]+$"):
+        post.main()
+
+
+def test_the_command_ends_with_one_line_where_the_answer_is_not_as_promised(
+    stand_in: StandIn, monkeypatch: pytest.MonkeyPatch, tmp_path: Path
+) -> None:
+    stand_in.movements = [{"id": "short-9", "title": "Short"}]
+    monkeypatch.setattr("sys.argv", ["post", "--address", stand_in.address, "--out", str(tmp_path)])
+
+    with pytest.raises(SystemExit, match=r"answered something unexpected: KeyError\('before_music_deg'\)$"):
+        post.main()
