@@ -23,9 +23,6 @@ import mido
 ANSWER_WITHIN_S = 120.0  # as long as service/up lets a worker compute
 INTERRUPTED = 130  # common practice: 128 + the number of SIGINT
 
-# No proxy that the surroundings name: the service is on this machine.
-_opener = urllib.request.build_opener(urllib.request.ProxyHandler({}))
-
 
 class DemoFailedError(Exception):
     """The demo could not be finished; its text is one line fit to show."""
@@ -112,8 +109,10 @@ def fetch(url: str, upload: Upload | None = None) -> bytes:
     if upload is not None:
         request.data = upload.body
         request.add_header("Content-Type", upload.media_type)
+    # No proxy that the surroundings name: the service is on this machine.
+    opener = urllib.request.build_opener(urllib.request.ProxyHandler({}))
     try:
-        with _opener.open(request, timeout=ANSWER_WITHIN_S) as answer:
+        with opener.open(request, timeout=ANSWER_WITHIN_S) as answer:
             return bytes(answer.read())
     except urllib.error.HTTPError as refusal:
         said = f"{refusal.code}, {_detail(refusal.read())}"

@@ -18,7 +18,7 @@ def taken_port() -> Iterator[int]:
 
 
 def run_up(tmp_path: Path, *arguments: str, port: str = "8000") -> "subprocess.CompletedProcess[str]":
-    command = ["/bin/sh", UP, *arguments]
+    command = ["/bin/sh", str(UP), *arguments]
     surroundings = {"PATH": "/usr/bin:/bin", "PORT": port, "PYTHON": sys.executable}
     return subprocess.run(
         command, check=False, cwd=tmp_path, env=surroundings, capture_output=True, text=True, timeout=60

@@ -2,13 +2,13 @@ import json
 import threading
 from collections.abc import Iterator
 from dataclasses import dataclass, field
-from email import message_from_bytes
 from http.server import BaseHTTPRequestHandler, ThreadingHTTPServer
 from io import BytesIO
 from pathlib import Path
 
 import mido
 import pytest
+from werkzeug.wrappers import Request
 
 from service.demo import post
 
@@ -119,13 +119,13 @@ def test_a_tune_longer_than_the_turn_is_posted_with_a_passage_of_one_free_turn(s
     post.make_disc(stand_in.address, "short-9", post.read_tune(midi), said.append)
 
     [(path, media_type, body)] = stand_in.posted
-    # read by the mail library, which knows nothing of the writer
-    form = message_from_bytes(b"Content-Type: " + media_type.encode() + b"\r\n\r\n" + body)
-    parts = {part.get_param("name", header="content-disposition"): part for part in form.walk()}
+    # read by werkzeug, the form reader of the service's web framework
+    form = Request.from_values(method="POST", content_type=media_type, data=body)
     assert path == "/v1/layouts?movement=short-9"
-    assert parts["tune"].get_payload(decode=True) == midi
-    assert parts["tune"].get_content_type() == "audio/midi"
-    settings = json.loads(str(parts["settings"].get_payload()))
+    assert set(form.files) == {"tune", "settings"}
+    assert form.files["tune"].read() == midi
+    assert form.files["tune"].mimetype == "audio/midi"
+    settings = json.loads(form.files["settings"].read())
     assert settings["format"] == "discwright-settings/1"
     assert settings["passage"] == {"from_s": 0, "to_s": pytest.approx(FREE_PART_S)}
     assert "  the tune lasts 37.0 s, one turn plays 36.2 s: that much of it is taken" in said
@@ -191,6 +191,8 @@ def test_a_service_that_ships_no_movement_is_a_failure(stand_in: StandIn, tmp_pa
 
 
 def test_a_proxy_named_by_the_surroundings_is_not_asked(stand_in: StandIn, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.delenv("no_proxy", raising=False)
+    monkeypatch.delenv("NO_PROXY", raising=False)
     monkeypatch.setenv("http_proxy", "http://127.0.0.1:1")
     stand_in.movements = [SHORT_TURN]
 
