@@ -9,7 +9,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from layout.arrange import arrange
-from layout.check import check_arrangement, check_disc
+from layout.check import check
 from layout.check.finding import Finding, stands
 from layout.cut import plan_cuts
 from layout.cut.plan import CutPlan
@@ -90,7 +90,7 @@ def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings)
         arrangement=arrangement,
         disc=disc,
         plucks=play(disc),
-        findings=check_arrangement(arrangement, movement) + check_disc(disc),
+        findings=check(disc, arrangement),
     )
 
 
@@ -136,6 +136,4 @@ def check_drawing(dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDraw
         DrawingReadError: The bytes are no drawing that can be read back.
     """
     reading = read_back(dxf, movement, cutter)
-    return CheckedDrawing(
-        disc=reading.disc, plucks=play(reading.disc), findings=reading.findings + check_disc(reading.disc)
-    )
+    return CheckedDrawing(disc=reading.disc, plucks=play(reading.disc), findings=reading.findings + check(reading.disc))

@@ -1,0 +1,62 @@
+"""Check: what is wrong, or near to wrong, with a disc, each with its number, limit, place and remedy."""
+
+from collections.abc import Callable
+
+from layout.arrange.arrangement import Arrangement
+from layout.check.blank import keep_outs_are_clear, tracks_are_on_the_disc, webs_to_the_blank_hold
+from layout.check.cutter import cutter_can_form, slits_are_wide_enough
+from layout.check.finding import Code, Finding, Level, Place, stands
+from layout.check.music import music_fits_the_turn, something_plays
+from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
+from layout.check.star_wheel import (
+    depth_stays_off_the_root,
+    neighbours_are_not_fouled,
+    own_star_is_met,
+    star_clears_the_disc,
+    star_is_reached,
+    step_is_one_point,
+    tip_clears_the_bend,
+    tooth_is_released,
+)
+from layout.check.webs import webs_between_openings_hold
+from layout.place.disc import Disc
+
+__all__ = ["Code", "Finding", "Level", "Place", "check", "stands"]
+
+DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
+    cutter_can_form,
+    slits_are_wide_enough,
+    star_clears_the_disc,
+    star_is_reached,
+    step_is_one_point,
+    tip_clears_the_bend,
+    depth_stays_off_the_root,
+    tooth_is_released,
+    neighbours_are_not_fouled,
+    own_star_is_met,
+    tracks_are_on_the_disc,
+    webs_to_the_blank_hold,
+    keep_outs_are_clear,
+    webs_between_openings_hold,
+    star_wheels_keep_up,
+    dampers_recover,
+    plucks_lie_in_the_music,
+    rest_is_clear,
+)
+
+
+def check(disc: Disc, arrangement: Arrangement | None = None) -> tuple[Finding, ...]:
+    """Every finding on a disc, in the order of the checks, by place within each.
+
+    A disc without projections has no findings of its own; its arrangement has: nothing plays.
+
+    Args:
+        disc: The disc.
+        arrangement: What it was placed from; None for a disc read back from a drawing.
+    """
+    of_music: list[Finding] = []
+    if arrangement is not None:
+        of_music = something_plays(arrangement, disc) + music_fits_the_turn(arrangement, disc)
+    if not disc.projection_count:
+        return tuple(of_music)
+    return tuple(of_music + [finding for one_check in DISC_CHECKS for finding in one_check(disc)])

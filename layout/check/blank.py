@@ -1,0 +1,148 @@
+"""Checks of the openings against the blank: rim, centre hole, features and keep-out rings."""
+
+import math
+
+import numpy as np
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged
+from layout.check.star_wheel import used_tracks
+from layout.documents.movement import Feature
+from layout.mechanics.blank import feature_angles_rad, feature_core_mm
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.spacing import core_geometries
+from layout.place.disc import Disc
+
+
+def tracks_are_on_the_disc(disc: Disc) -> list[Finding]:
+    """An error for every used track whose projections, by their width, do not lie wholly on the disc."""
+    blank, half_mm = disc.movement.disc, disc.movement.projection.width_mm / 2
+    rim_mm, hole_mm = blank.outer_diameter_mm / 2, blank.centre_hole_mm / 2
+    findings: list[Finding] = []
+    for index in used_tracks(disc):
+        radius_mm = float(disc.turning.radius_mm[index])
+        beyond = radius_mm + half_mm > rim_mm
+        if not beyond and radius_mm - half_mm >= hole_mm:
+            continue
+        edge_mm, limit_mm = (radius_mm + half_mm, rim_mm) if beyond else (radius_mm - half_mm, hole_mm)
+        findings.append(
+            Finding(
+                code=Code.TRACK_OFF_DISC,
+                level=Level.ERROR,
+                message=(
+                    f"Projections on track {index + 1} reach to {edge_mm:.3f} mm from the centre; "
+                    f"the disc's {'rim' if beyond else 'centre hole'} is at {limit_mm:.3f} mm."
+                ),
+                measured=edge_mm,
+                limit=limit_mm,
+                unit="mm",
+                at=Place(tracks=(index + 1,), radius_mm=radius_mm),
+                remedy="Correct the track's radius_mm or the disc's diameter in the movement document.",
+            )
+        )
+    return findings
+
+
+def webs_to_the_blank_hold(disc: Disc) -> list[Finding]:
+    """An error where an opening leaves less than the least web to rim, centre hole or a feature."""
+    findings: list[Finding] = []
+    for index in used_tracks(disc):
+        nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
+        rim_mm, hole_mm = disc.movement.disc.outer_diameter_mm / 2, disc.movement.disc.centre_hole_mm / 2
+        findings += _web_to(disc, index, Code.WEB_TO_RIM, "the rim", rim_mm - farthest_mm)
+        findings += _web_to(disc, index, Code.WEB_TO_CENTRE_HOLE, "the centre hole", nearest_mm - hole_mm)
+    return findings + _webs_to_features(disc)
+
+
+def keep_outs_are_clear(disc: Disc) -> list[Finding]:
+    """An error where the openings of a track reach into a ring in which nothing may be cut."""
+    findings: list[Finding] = []
+    for index in used_tracks(disc):
+        nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
+        for place, ring in enumerate(disc.movement.keep_out):
+            clear_mm = max(nearest_mm - ring.to_radius_mm, ring.from_radius_mm - farthest_mm)
+            condition = Condition(
+                code=Code.IN_KEEP_OUT,
+                says=(
+                    f"Openings on track {index + 1}, from {nearest_mm:.3f} to {farthest_mm:.3f} mm, come within "
+                    f"{clear_mm:.3f} mm of the ring from {ring.from_radius_mm:.3f} to {ring.to_radius_mm:.3f} mm that "
+                    f"must stay whole: {ring.why}."
+                ),
+                measured=clear_mm,
+                limit=0.0,
+                unit="mm",
+                margin=clear_mm + GRAIN_MM,
+                rests_on=(f"/keep_out/{place}/from_radius_mm", f"/keep_out/{place}/to_radius_mm"),
+                at=Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index])),
+                remedy="Correct the ring or the track's radius_mm, or leave the notes of this track out.",
+            )
+            findings += judged(condition, disc.movement)
+    return findings
+
+
+def _radial_reach_mm(disc: Disc, index: int) -> tuple[float, float]:
+    """Least and greatest distance of a track's openings from the centre: the same for all of them."""
+    radius_mm = disc.turning.radius_mm[[index]]
+    points_mm = on_disc_mm(disc.pattern.core_points_mm, radius_mm, np.zeros(1), disc.turning.direction)
+    nearest_mm = float(shapely.distance(core_geometries(points_mm)[0], shapely.Point(0.0, 0.0)))
+    farthest_mm = float(np.hypot(points_mm[0, :, 0], points_mm[0, :, 1]).max())
+    return nearest_mm - disc.pattern.core_round_mm, farthest_mm + disc.pattern.core_round_mm
+
+
+def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> list[Finding]:
+    limit_mm = disc.cutter.min_web_mm
+    condition = Condition(
+        code=code,
+        says=(
+            f"Openings on track {index + 1} leave {web_mm:.3f} mm to {what}; {disc.cutter.id} needs {limit_mm:.3f} mm."
+        ),
+        measured=web_mm,
+        limit=limit_mm,
+        unit="mm",
+        margin=web_mm - limit_mm + GRAIN_MM,
+        rests_on=(f"/tracks/{index}/radius_mm", "/disc/outer_diameter_mm", "/disc/centre_hole_mm"),
+        at=Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index])),
+        remedy="Leave the notes of this track out, or correct the track's radius_mm or the blank's sizes.",
+    )
+    return judged(condition, disc.movement)
+
+
+def _webs_to_features(disc: Disc) -> list[Finding]:
+    points_mm = on_disc_mm(disc.pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    cores = core_geometries(points_mm)
+    findings: list[Finding] = []
+    for feature in disc.movement.disc.features:
+        for angle_rad in feature_angles_rad(feature):
+            core, round_mm = feature_core_mm(feature, angle_rad)
+            findings += _webs_to_feature(disc, cores, feature, (core, round_mm + disc.pattern.core_round_mm))
+    return findings[:MOST_FINDINGS]
+
+
+def _webs_to_feature(
+    disc: Disc, cores: np.ndarray, feature: Feature, grown: tuple[BaseGeometry, float]
+) -> list[Finding]:
+    limit_mm = disc.cutter.min_web_mm
+    webs_mm = shapely.distance(cores, grown[0]) - grown[1]
+    return [
+        Finding(
+            code=Code.WEB_TO_FEATURE,
+            level=Level.ERROR,
+            message=(
+                f"An opening on track {int(disc.track_index[index]) + 1} leaves {webs_mm[index]:.3f} mm to a "
+                f"{feature.purpose} {feature.shape}; {disc.cutter.id} needs {limit_mm:.3f} mm."
+            ),
+            measured=float(webs_mm[index]),
+            limit=limit_mm,
+            unit="mm",
+            at=Place(
+                tracks=(int(disc.track_index[index]) + 1,),
+                projections=(int(index),),
+                radius_mm=float(disc.radius_mm[index]),
+                angle_deg=math.degrees(disc.edge_angle_rad[index]),
+            ),
+            remedy="Leave the note out or put it on another track, or correct the feature in the movement document.",
+        )
+        for index in np.flatnonzero(webs_mm < limit_mm - GRAIN_MM)
+    ]

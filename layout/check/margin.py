@@ -1,0 +1,68 @@
+"""A number held against its limit, and what the number is worth.
+
+A condition is met while its margin is at or above zero. The margin rests on numbers of the
+movement that may have been measured; where they may be off by more than the margin, met or not,
+that is said.
+"""
+
+from dataclasses import dataclass
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.documents.movement import Movement
+
+GRAIN_MM = 1e-9  # mm; rounding of doubles at disc size, far below anything a cutter can do
+GRAIN_RAD = 1e-12  # rad; the same as an angle: GRAIN_MM at a radius of 1 m
+MOST_FINDINGS = 200  # findings of one check; a disc with more is wrong as a whole, and is told so
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Condition:
+    """What must hold, and how to tell that it does not.
+
+    Attributes:
+        code: Of the finding where it fails.
+        says: The sentence of that finding.
+        measured: The number found.
+        limit: The number it is held against.
+        unit: Of both.
+        margin: At or above zero where the condition holds, in `unit`.
+        rests_on: JSON pointers of the movement's numbers the margin rests on.
+        at: Where.
+        remedy: What a person can do.
+    """
+
+    code: Code
+    says: str
+    measured: float
+    limit: float
+    unit: str
+    margin: float
+    rests_on: tuple[str, ...]
+    at: Place
+    remedy: str
+
+
+def judged(condition: Condition, movement: Movement) -> list[Finding]:
+    """An error where the condition fails, a warning where it holds by less than its numbers are worth."""
+    unsure = sum(movement.plus_minus(pointer) for pointer in condition.rests_on)
+    fails = condition.margin < 0
+    if not fails and condition.margin >= unsure:
+        return []
+    says = condition.says
+    if abs(condition.margin) < unsure:
+        says += (
+            f" The margin of {condition.margin:.3f} {condition.unit} is smaller than the ±{unsure:.3f} "
+            f"{condition.unit} of the numbers it stands on."
+        )
+    return [
+        Finding(
+            code=condition.code if fails else Code.MARGIN_UNSURE,
+            level=Level.ERROR if fails else Level.WARNING,
+            message=says,
+            measured=condition.measured,
+            limit=condition.limit,
+            unit=condition.unit,
+            at=condition.at,
+            remedy=condition.remedy if fails else f"Measure again to be sure; if it then fails: {condition.remedy}",
+        )
+    ]

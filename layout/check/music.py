@@ -1,0 +1,48 @@
+"""Checks on what the disc plays of the tune."""
+
+from layout.arrange.arrangement import Arrangement
+from layout.check.finding import Code, Finding, Level, Place
+from layout.place.disc import Disc
+
+
+def something_plays(arrangement: Arrangement, disc: Disc) -> list[Finding]:
+    """An error where the comb plays not one note of the tune."""
+    if len(arrangement.track_index):
+        return []
+    reasons = sorted({note.reason for note in arrangement.left_out})
+    why = f"every note is left out ({', '.join(reasons)})" if reasons else "the tune holds no notes"
+    return [
+        Finding(
+            code=Code.NOTHING_TO_PLAY,
+            level=Level.ERROR,
+            message=f"Nothing on this disc would sound on {disc.movement.id}: {why}.",
+            measured=0.0,
+            limit=1.0,
+            unit="",
+            at=Place(),
+            remedy="Choose another passage, transposition or movement, or check that the right tune was sent.",
+        )
+    ]
+
+
+def music_fits_the_turn(arrangement: Arrangement, disc: Disc) -> list[Finding]:
+    """An error where notes of the passage lie past the free part of the turn."""
+    past = sum(note.reason == "past-the-turn" for note in arrangement.left_out)
+    free_s = disc.turning.free_turn_s
+    if not past:
+        return []
+    return [
+        Finding(
+            code=Code.MUSIC_TOO_LONG,
+            level=Level.ERROR,
+            message=(
+                f"The music lasts {arrangement.length_s:.2f} s from its first to its last note; one turn of "
+                f"{disc.movement.id} has {free_s:.2f} s for it, so {past} notes fall past the turn."
+            ),
+            measured=arrangement.length_s,
+            limit=free_s,
+            unit="s",
+            at=Place(sounds_s=free_s),
+            remedy='Choose a passage ("passage": {"from_s", "to_s"}), or play it faster ("speed": {"mode": "fit"}).',
+        )
+    ]

@@ -1,0 +1,156 @@
+"""Checks along the turn: repeats on each track, dampers, the music's part of the turn and the rest sector."""
+
+import math
+
+import numpy as np
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS
+from layout.check.star_wheel import used_tracks
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.star_wheel import touch_zone_mm
+from layout.mechanics.turning import FULL_TURN_RAD
+from layout.place.disc import Disc
+
+
+def star_wheels_keep_up(disc: Disc) -> list[Finding]:
+    """An error for two working edges of one track nearer than its engagement arc, over the turn's end too."""
+    findings: list[Finding] = []
+    for index in used_tracks(disc):
+        reach_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
+        limit_mm = float(disc.turning.engagement_arc_mm[index])
+        for one, two, apart_rad in _neighbours(disc, index):
+            travel_mm = apart_rad * reach_mm
+            if travel_mm >= limit_mm - GRAIN_MM:
+                continue
+            apart_s = apart_rad * disc.turning.revolution_s / FULL_TURN_RAD
+            least_s = limit_mm / reach_mm * disc.turning.revolution_s / FULL_TURN_RAD
+            message = (
+                f"Two plucks on track {index + 1} are {travel_mm:.3f} mm ({apart_s:.3f} s) apart; its star wheel "
+                f"needs {limit_mm:.3f} mm ({least_s:.3f} s) to make its step."
+            )
+            findings.append(_repeat(disc, Code.REPEAT_TOO_SOON, message, (one, two), (travel_mm, limit_mm, "mm")))
+    return findings[:MOST_FINDINGS]
+
+
+def dampers_recover(disc: Disc) -> list[Finding]:
+    """An error for two plucks of a damped tooth nearer than its recovery, at the movement's fastest turn."""
+    movement = disc.movement
+    damped = {tooth.track for tooth in movement.teeth if tooth.damped and tooth.usable}
+    findings: list[Finding] = []
+    for index in used_tracks(disc):
+        if index + 1 not in damped:
+            continue
+        for one, two, apart_rad in _neighbours(disc, index):
+            apart_s = apart_rad * movement.fastest_revolution_s / FULL_TURN_RAD
+            if apart_rad >= FULL_TURN_RAD * movement.damper_recovery_s / movement.fastest_revolution_s - GRAIN_RAD:
+                continue
+            message = (
+                f"Two plucks on track {index + 1} are {apart_s:.3f} s apart at the fastest turn; "
+                f"its damper needs {movement.damper_recovery_s:.3f} s."
+            )
+            numbers = (apart_s, movement.damper_recovery_s, "s")
+            findings.append(_repeat(disc, Code.DAMPER_NOT_RECOVERED, message, (one, two), numbers))
+    return findings[:MOST_FINDINGS]
+
+
+def plucks_lie_in_the_music(disc: Disc) -> list[Finding]:
+    """An error for a pluck before the music starts or after the last moment of its part of the turn."""
+    sounds_s = disc.turning.sounds_s(disc.edge_angle_rad, disc.track_index)
+    end_s = disc.turning.free_turn_s
+    grain_s = GRAIN_RAD * disc.turning.revolution_s
+    outside = np.flatnonzero((sounds_s < -grain_s) | (sounds_s > end_s + grain_s))
+    return [
+        Finding(
+            code=Code.PLUCK_OUTSIDE_MUSIC,
+            level=Level.ERROR,
+            message=(
+                f"A pluck on track {int(disc.track_index[index]) + 1} sounds at {sounds_s[index]:.3f} s; "
+                f"music may sound from 0 to {end_s:.3f} s."
+            ),
+            measured=float(sounds_s[index]),
+            limit=0.0 if sounds_s[index] < 0 else end_s,
+            unit="s",
+            at=_at(disc, (int(index),)),
+            remedy="Move the pluck into the music's part of the turn, or leave it out.",
+        )
+        for index in outside[:MOST_FINDINGS]
+    ]
+
+
+def rest_is_clear(disc: Disc) -> list[Finding]:
+    """An error for a projection that stands on its star wheel while the disc is at rest.
+
+    Judged by arc on every track, from where a working edge may first touch a point to where the
+    end of its standing body has left it.
+    """
+    past_mm, before_mm, after_mm = _at_rest(disc)
+    clear_mm = np.maximum(before_mm - past_mm, past_mm - after_mm)
+    return [
+        Finding(
+            code=Code.REST_NOT_CLEAR,
+            level=Level.ERROR,
+            message=(
+                f"At rest the working edge of a projection on track {int(disc.track_index[index]) + 1} stands "
+                f"{past_mm[index]:.3f} mm past the row; it may touch its star wheel from {before_mm[index]:.3f} "
+                f"to {after_mm[index]:.3f} mm."
+            ),
+            measured=float(clear_mm[index]),
+            limit=0.0,
+            unit="mm",
+            at=_at(disc, (int(index),)),
+            remedy="Leave the note out, or give the movement a wider rest sector (before_music_deg, after_music_deg).",
+        )
+        for index in np.flatnonzero(clear_mm < -GRAIN_MM)[:MOST_FINDINGS]
+    ]
+
+
+def _at_rest(disc: Disc) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Arcs past the star wheel at rest: of each working edge, and of both ends of its touch zone."""
+    turning, row_mm = disc.turning, disc.movement.gantry_offset_mm
+    ends = np.array([touch_zone_mm(disc.movement, index) for index in range(len(turning.radius_mm))])
+    ends[:, 1] += disc.pattern.body_behind_mm
+    sines = (row_mm - turning.direction * ends) / turning.radius_mm[:, None]
+    zone_mm = turning.direction * (turning.row_rad[:, None] - np.arcsin(np.clip(sines, -1, 1)))
+    zone_mm = zone_mm * turning.radius_mm[:, None]
+    past_rad = turning.direction * (turning.row_rad[disc.track_index] - disc.edge_angle_rad)
+    past_rad = np.mod(past_rad + math.pi, FULL_TURN_RAD) - math.pi
+    return past_rad * disc.radius_mm, zone_mm[disc.track_index, 0], zone_mm[disc.track_index, 1]
+
+
+def _neighbours(disc: Disc, index: int) -> list[tuple[int, int, float]]:
+    """Pairs of projections that follow each other on a track, and the angle between them."""
+    here: IntArray = np.flatnonzero(disc.track_index == index)
+    if len(here) < 2:  # noqa: PLR2004 - one projection has no neighbour on its track
+        return []
+    ranked = here[np.argsort(disc.edge_angle_rad[here], kind="stable")]
+    angles = disc.edge_angle_rad[ranked]
+    gaps = np.diff(np.append(angles, angles[0] + FULL_TURN_RAD))
+    following = np.roll(ranked, -1)
+    return [(int(a), int(b), float(gap)) for a, b, gap in zip(ranked, following, gaps, strict=True)]
+
+
+def _at(disc: Disc, projections: tuple[int, ...]) -> Place:
+    first = projections[0]
+    sounds_s = disc.turning.sounds_s(disc.edge_angle_rad[[first]], disc.track_index[[first]])
+    return Place(
+        tracks=(int(disc.track_index[first]) + 1,),
+        projections=projections,
+        radius_mm=float(disc.radius_mm[first]),
+        angle_deg=math.degrees(disc.edge_angle_rad[first]),
+        sounds_s=float(sounds_s[0]),
+    )
+
+
+def _repeat(disc: Disc, code: Code, message: str, pair: tuple[int, int], numbers: tuple[float, float, str]) -> Finding:
+    measured, limit, unit = numbers
+    return Finding(
+        code=code,
+        level=Level.ERROR,
+        message=message,
+        measured=measured,
+        limit=limit,
+        unit=unit,
+        at=_at(disc, pair),
+        remedy="Leave one of the two out, or put it on another track of the same pitch.",
+    )

@@ -1,0 +1,65 @@
+"""Checks on the metal left between openings, after forming.
+
+A *web* is the metal between two openings. Openings are the holes that remain once the tabs are
+formed; all have one pattern, so the distance between their cores less twice the rounding is exact.
+"""
+
+import numpy as np
+import shapely
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.check.margin import GRAIN_MM, MOST_FINDINGS
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.spacing import core_geometries
+from layout.place.disc import Disc
+
+
+def webs_between_openings_hold(disc: Disc) -> list[Finding]:
+    """An error for every pair of openings nearer than the cutter's least web, thinnest first."""
+    limit_mm, round_mm = disc.cutter.min_web_mm, disc.pattern.core_round_mm
+    points_mm = on_disc_mm(disc.pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    cores = core_geometries(points_mm)
+    tree = shapely.STRtree(cores)
+    one, two = tree.query(cores, predicate="dwithin", distance=limit_mm + 2 * round_mm)
+    one, two = one[one < two], two[one < two]
+    webs_mm = shapely.distance(cores[one], cores[two]) - 2 * round_mm
+    order = np.lexsort((two, one, webs_mm))
+    order = order[webs_mm[order] < limit_mm - GRAIN_MM]
+    findings = [_thin(disc, int(one[pair]), int(two[pair]), float(webs_mm[pair])) for pair in order[:MOST_FINDINGS]]
+    if len(order) > MOST_FINDINGS:
+        findings.append(_more(disc, len(order)))
+    return findings
+
+
+def _thin(disc: Disc, one: int, two: int, web_mm: float) -> Finding:
+    tracks = tuple(int(disc.track_index[index]) + 1 for index in (one, two))
+    limit_mm = disc.cutter.min_web_mm
+    left = f"leave {web_mm:.3f} mm of metal between them" if web_mm > 0 else "run into each other"
+    return Finding(
+        code=Code.WEB_TOO_THIN,
+        level=Level.ERROR,
+        message=f"Openings on tracks {tracks[0]} and {tracks[1]} {left}; {disc.cutter.id} needs {limit_mm:.3f} mm.",
+        measured=web_mm,
+        limit=limit_mm,
+        unit="mm",
+        at=Place(
+            tracks=tracks,
+            projections=(one, two),
+            radius_mm=float(disc.radius_mm[[one, two]].mean()),
+            angle_deg=float(np.degrees(disc.edge_angle_rad[one])),
+        ),
+        remedy="Leave one of the two notes out or put it on another track; or use narrower slits.",
+    )
+
+
+def _more(disc: Disc, count: int) -> Finding:
+    return Finding(
+        code=Code.WEB_TOO_THIN,
+        level=Level.ERROR,
+        message=f"{count} pairs of openings are too near to each other; the {MOST_FINDINGS} thinnest webs are listed.",
+        measured=float(count),
+        limit=float(MOST_FINDINGS),
+        unit="",
+        at=Place(),
+        remedy="The disc is crowded as a whole: check that drawing, movement and cutter belong together.",
+    )

@@ -1,0 +1,43 @@
+"""The blank's own features: where each hole, slot or notch of a row lies, and its shape."""
+
+import math
+
+import numpy as np
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from layout.documents.movement import Feature
+from layout.mechanics.arrays import FloatArray
+from layout.mechanics.turning import FULL_TURN_RAD
+
+
+def feature_angles_rad(feature: Feature) -> list[float]:
+    """Angles of the features of a row, evenly spread round the disc from first_at_deg."""
+    first = math.radians(feature.first_at_deg)
+    return [first + place * FULL_TURN_RAD / feature.count for place in range(feature.count)]
+
+
+def feature_axes(angle_rad: float) -> tuple[FloatArray, FloatArray]:
+    """Unit vectors outwards and anticlockwise along the circle at an angle."""
+    cos, sin = math.cos(angle_rad), math.sin(angle_rad)
+    return np.array([cos, sin]), np.array([-sin, cos])
+
+
+def feature_core_mm(feature: Feature, angle_rad: float) -> tuple[BaseGeometry, float]:
+    """One feature as a core and the radius it is grown by on all sides; distances are then exact.
+
+    A hole is a point, a slot a straight line along its travel, a notch a rectangle, grown by 0.
+    """
+    out, along = feature_axes(angle_rad)
+    centre = feature.radius_mm * out
+    if feature.shape == "hole":
+        return shapely.Point(*centre), feature.width_mm / 2
+    if feature.shape == "slot" and feature.length_mm >= feature.width_mm:
+        half = along * (feature.length_mm - feature.width_mm) / 2
+        return shapely.LineString([centre - half, centre + half]), feature.width_mm / 2
+    if feature.shape == "slot":  # longer across the radius than along the travel
+        half = out * (feature.width_mm - feature.length_mm) / 2
+        return shapely.LineString([centre - half, centre + half]), feature.length_mm / 2
+    half_out, half_along = out * feature.width_mm / 2, along * feature.length_mm / 2
+    corners = [centre - half_out - half_along, centre + half_out - half_along]
+    return shapely.Polygon([*corners, centre + half_out + half_along, centre - half_out + half_along]), 0.0
