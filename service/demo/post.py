@@ -115,7 +115,8 @@ def fetch(url: str, upload: Upload | None = None) -> bytes:
         with opener.open(request, timeout=ANSWER_WITHIN_S) as answer:
             return bytes(answer.read())
     except urllib.error.HTTPError as refusal:
-        said = f"{refusal.code}, {_detail(refusal.read())}"
+        with refusal:
+            said = f"{refusal.code}, {_detail(refusal.read())}"
         raise DemoFailedError(f"{request.get_method()} {url} was refused: {said}") from refusal
     except OSError as failure:
         raise DemoFailedError(f"{url} does not answer: {failure}") from failure

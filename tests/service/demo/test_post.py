@@ -69,7 +69,7 @@ def stand_in() -> Iterator[StandIn]:
 
     with ThreadingHTTPServer(("127.0.0.1", 0), Handler) as server:
         service.address = f"http://127.0.0.1:{server.server_address[1]}"
-        thread = threading.Thread(target=server.serve_forever)
+        thread = threading.Thread(target=server.serve_forever, args=(0.02,))
         thread.start()
         yield service
         server.shutdown()
@@ -119,13 +119,15 @@ def test_a_tune_longer_than_the_turn_is_posted_with_a_passage_of_one_free_turn(s
     post.make_disc(stand_in.address, "short-9", post.read_tune(midi), said.append)
 
     [(path, media_type, body)] = stand_in.posted
-    # read by werkzeug, the form reader of the service's web framework
-    form = Request.from_values(method="POST", content_type=media_type, data=body)
     assert path == "/v1/layouts?movement=short-9"
-    assert set(form.files) == {"tune", "settings"}
-    assert form.files["tune"].read() == midi
-    assert form.files["tune"].mimetype == "audio/midi"
-    settings = json.loads(form.files["settings"].read())
+    # read by werkzeug, the form reader of the service's web framework
+    with Request.from_values(method="POST", content_type=media_type, data=body) as form:
+        assert set(form.files) == {"tune", "settings"}
+        assert form.files["tune"].read() == midi
+        assert form.files["tune"].mimetype == "audio/midi"
+        settings = json.loads(form.files["settings"].read())
+    # RFC 2046 section 4.1.1: lines end with CR LF
+    assert b"\n" not in body.replace(midi, b"").replace(b"\r\n", b"")
     assert settings["format"] == "discwright-settings/1"
     assert settings["passage"] == {"from_s": 0, "to_s": pytest.approx(FREE_PART_S)}
     assert "  the tune lasts 37.0 s, one turn plays 36.2 s: that much of it is taken" in said
