@@ -41,8 +41,6 @@ UNIT_SUFFIXES = (
 )
 # Class.field: why it carries no unit.
 FIELDS_WITHOUT_UNIT = {
-    "Finding.measured": "each code has its own unit, in the field `unit`",
-    "Finding.limit": "in the same unit as `measured`",
     "Shape.bulges": "a DXF bulge is a plain number, tan of a quarter of the arc's angle",
     "Outlines.bulges": "as in Shape",
     "Pattern.fold_line": "a line, not a length: its two ends, in mm like all points of a pattern",
@@ -96,12 +94,15 @@ def lines_without_docstring(function: ast.FunctionDef | ast.AsyncFunctionDef) ->
 
 
 def float_fields_of_dataclasses(path: Path) -> Iterator[tuple[str, str]]:
-    """(class, field) of every field of a dataclass whose type speaks of floats."""
+    """(class, field) of the float fields of every dataclass, but for those whose unit stands in a field `unit`."""
     for node in ast.walk(ast.parse(path.read_text())):
         if isinstance(node, ast.ClassDef) and any("dataclass" in ast.unparse(d) for d in node.decorator_list):
-            for field in node.body:
-                if isinstance(field, ast.AnnAssign) and re.search(r"\bfloat\b|FloatArray", ast.unparse(field)):
-                    yield node.name, ast.unparse(field.target)
+            fields = {
+                ast.unparse(f.target): ast.unparse(f.annotation) for f in node.body if isinstance(f, ast.AnnAssign)
+            }
+            for name, annotation in fields.items():
+                if "unit" not in fields and re.search(r"\bfloat\b|FloatArray", annotation):
+                    yield node.name, name
 
 
 def tracked_files() -> list[str]:
