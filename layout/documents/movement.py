@@ -272,6 +272,7 @@ class Movement(Part):
                 raise ValueError(f"keep-out {ring.why!r}: to_radius_mm must be above from_radius_mm")
         for feature in self.disc.features:
             _check_feature(feature, self.disc)
+        _check_notches_stay_apart(self.disc.features)
         return self
 
 
@@ -281,12 +282,30 @@ def _check_feature(feature: Feature, disc: DiscBlank) -> None:
     if feature.shape == "notch":
         if not feature.radius_mm - half_mm < rim_mm < feature.radius_mm + half_mm:
             raise ValueError(f"a notch must cross the rim at {rim_mm:g} mm; move its radius_mm or widen it")
+        if feature.radius_mm - half_mm <= disc.centre_hole_mm / 2:
+            raise ValueError(f"a notch at {feature.radius_mm:g} mm, {feature.width_mm:g} wide, reaches the centre hole")
     elif feature.radius_mm + half_mm >= rim_mm or feature.radius_mm - half_mm <= disc.centre_hole_mm / 2:
         raise ValueError(f"the {feature.purpose} {feature.shape} at {feature.radius_mm:g} mm leaves the disc")
     if feature.shape == "hole" and feature.length_mm != feature.width_mm:
         raise ValueError("a hole is round: give it the same width_mm and length_mm, or shape slot")
     if feature.count * feature.length_mm >= 2 * math.pi * feature.radius_mm:
         raise ValueError(f"{feature.count} of {feature.length_mm:g} mm do not fit round {feature.radius_mm:g} mm")
+
+
+def _check_notches_stay_apart(features: tuple[Feature, ...]) -> None:
+    """The rim is one simple outline only where no two notches meet; each lies in a sector of its own."""
+    sectors = []
+    for feature in features:
+        if feature.shape == "notch":
+            half_deg = math.degrees(math.atan2(feature.length_mm / 2, feature.radius_mm - feature.width_mm / 2))
+            step_deg = FULL_TURN_DEG / feature.count
+            sectors += [((feature.first_at_deg + n * step_deg) % FULL_TURN_DEG, half_deg) for n in range(feature.count)]
+    sectors.sort()
+    for place, (at_deg, half_deg) in enumerate(sectors):
+        next_deg, next_half_deg = sectors[(place + 1) % len(sectors)]
+        wrap_deg = FULL_TURN_DEG if place + 1 == len(sectors) else 0.0
+        if next_deg + wrap_deg - at_deg <= half_deg + next_half_deg:
+            raise ValueError(f"the notches at {at_deg:g} and {next_deg:g} degrees meet; make them one, or move one")
 
 
 def read_movement(text: str | bytes) -> Movement:

@@ -129,6 +129,6 @@ def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
         return Problem(pointer=place, message="this field is needed")
     message = fault["msg"].removeprefix("Value error, ")
     seen = fault.get("input")
-    if isinstance(seen, str | int | float) and repr(seen) not in message:
+    if isinstance(seen, str | int | float) and "got" not in message and fault["type"] != "value_error":
         message = f"{message}, got {seen!r}"
     return Problem(pointer=place, message=message)

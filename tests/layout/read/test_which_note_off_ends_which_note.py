@@ -300,3 +300,37 @@ def test_the_arrays_of_a_score_are_read_only() -> None:
 
     arrays = (score.onset_s, score.duration_s, score.pitch, score.velocity, score.channel)
     assert not any(array.flags.writeable for array in arrays)
+
+
+def test_a_note_of_no_length_written_backwards_does_not_shift_the_note_offs_after_it() -> None:
+    tune = midi_file("""
+        00 80 3C 40  # tick 0: the grace note's note-off, sorted before its note-on
+        00 90 3C 41  # the grace note
+        60 90 3C 42  # tick 96: the note itself
+        60 80 3C 40  # tick 192: off
+        60 90 3C 43  # tick 288: another
+        60 80 3C 40  # tick 384: off
+        00 FF 2F 00  # end of track
+    """)
+
+    score = read_score(tune)
+
+    assert spans_of(score) == [(60, 0.0, 0.0), (60, 0.5, 0.5), (60, 1.5, 0.5)]
+    assert score.warnings == ()
+
+
+def test_a_note_off_written_before_every_note_on_to_be_safe_changes_nothing() -> None:
+    tune = midi_file("""
+        00 80 3C 40  # tick 0: note off 60, nothing sounding
+        00 90 3C 40  # note on
+        60 80 3C 40  # tick 96: off
+        60 80 3C 40  # tick 192: off again, nothing sounding
+        00 90 3C 40  # note on
+        60 80 3C 40  # tick 288: off
+        00 FF 2F 00  # end of track
+    """)
+
+    score = read_score(tune)
+
+    assert spans_of(score) == [(60, 0.0, 0.5), (60, 1.0, 0.5)]
+    assert score.warnings == ()

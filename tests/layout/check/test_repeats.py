@@ -1,0 +1,173 @@
+import math
+
+import pytest
+
+from layout.arrange.arrangement import LeftOut
+from layout.check import Code, Level, check
+from layout.check.music import music_fits_the_turn, something_plays
+from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
+from layout.documents import Movement
+from tests.layout.examples import PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
+
+# On track 1 of the plain movement, radius 50 at 60 s a turn, the edge travels 2 pi 50 / 60 = 5.235988 mm/s,
+# so the engagement arc of 3.2 mm takes 0.611155 s.
+LEAST_S = 0.611155
+
+
+def test_a_repeat_faster_than_the_star_wheel_is_found() -> None:
+    [finding] = star_wheels_keep_up(disc_of(PLAIN, [(1, 10.0), (1, 10.5)]))
+
+    assert finding.code is Code.REPEAT_TOO_SOON
+    assert finding.level is Level.ERROR
+    assert finding.measured == pytest.approx(2.617994, abs=1e-6)  # 0.5 s * 5.235988
+    assert finding.limit == pytest.approx(3.2)
+    assert finding.message == (
+        "Two plucks on track 1 are 2.618 mm (0.500 s) apart; its star wheel needs 3.200 mm (0.611 s) to make its step."
+    )
+    assert finding.at.sounds_s == pytest.approx(10.0)
+
+
+@pytest.mark.parametrize("later_s", [LEAST_S + 1e-5, 5.0])
+def test_a_repeat_the_star_wheel_can_follow_passes(later_s: float) -> None:
+    assert star_wheels_keep_up(disc_of(PLAIN, [(1, 10.0), (1, 10.0 + later_s)])) == []
+
+
+def test_plucks_on_different_tracks_do_not_hinder_each_other() -> None:
+    assert star_wheels_keep_up(disc_of(PLAIN, [(1, 10.0), (2, 10.0)])) == []
+
+
+def test_the_last_pluck_of_a_turn_and_the_first_of_the_next_are_neighbours() -> None:
+    # nearly no rest: 0.1 deg before and after the music; 60 s * 359.8 / 360 = 59.9667 s of music
+    movement = movement_with({"before_music_deg": 0.1, "after_music_deg": 0.1})
+
+    [finding] = star_wheels_keep_up(disc_of(movement, [(1, 0.0), (1, 59.9)]))
+
+    # the turn ends 0.1 s after the last: 0.1 * 5.235988
+    assert finding.measured == pytest.approx(0.5236, abs=1e-4)
+
+
+def test_with_an_offset_row_the_least_angle_is_wider() -> None:
+    # d = 30 on radius 50: cos delta = 0.8, so the arc needs 3.2 / (50 * 0.8) rad = 0.763944 s
+    movement = movement_with({"gantry_offset_mm": 30})
+
+    assert star_wheels_keep_up(disc_of(movement, [(1, 10.0), (1, 10.764)])) == []
+    [finding] = star_wheels_keep_up(disc_of(movement, [(1, 10.0), (1, 10.763)]))
+    assert "(0.764 s)" in finding.message
+
+
+def test_a_repeat_before_the_damper_has_recovered_is_found_at_the_fastest_turn() -> None:
+    # 1 s at 60 s a turn is 0.8 s at 48 s a turn
+    movement = movement_with({"damper_recovery_s": 0.9, "fastest_revolution_s": 48})
+
+    [finding] = dampers_recover(disc_of(movement, [(1, 10.0), (1, 11.0)]))
+
+    assert finding.code is Code.DAMPER_NOT_RECOVERED
+    assert finding.measured == pytest.approx(0.8)
+    assert finding.message == "Two plucks on track 1 are 0.800 s apart at the fastest turn; its damper needs 0.900 s."
+
+
+def test_a_damper_that_has_just_recovered_passes() -> None:
+    movement = movement_with({"damper_recovery_s": 0.8, "fastest_revolution_s": 48})
+
+    assert dampers_recover(disc_of(movement, [(1, 10.0), (1, 11.0)])) == []
+
+
+def test_an_undamped_tooth_needs_no_recovery() -> None:
+    movement = movement_with({"damper_recovery_s": 0.9, "teeth/0/damped": False})
+
+    assert dampers_recover(disc_of(movement, [(1, 10.0), (1, 10.7)])) == []
+
+
+def test_plucks_at_the_very_ends_of_the_music_pass() -> None:
+    # 60 * (360 - 60) / 360 = 50 s of music
+    disc = disc_of(PLAIN, [(1, 0.0), (1, 50.0)])
+
+    assert plucks_lie_in_the_music(disc) == []
+
+
+@pytest.mark.parametrize(("sounds_s", "limit_s"), [(50.01, 50.0), (-0.01, 0.0)])
+def test_a_pluck_outside_the_music_is_found(sounds_s: float, limit_s: float) -> None:
+    [finding] = plucks_lie_in_the_music(disc_of(PLAIN, [(1, sounds_s)]))
+
+    assert finding.code is Code.PLUCK_OUTSIDE_MUSIC
+    assert finding.measured == pytest.approx(sounds_s)
+    assert finding.limit == pytest.approx(limit_s)
+    assert f"sounds at {sounds_s:.3f} s; music may sound from 0 to 50.000 s" in finding.message
+
+
+@pytest.mark.parametrize(
+    ("changes", "sounds_s", "clear"),
+    [
+        # At rest an edge that sounds t after the start stands (before + 6 t) deg short of its release. The tip may be
+        # touched up to R sin acos((3.75 - 1.41 - 0.15)/3.2) = 3.2 sin 46.8 deg = 2.3333 mm either side of the row:
+        # on radius 50, 2.6748 deg.
+        ({"before_music_deg": 2.66}, 0.0, False),
+        ({"before_music_deg": 2.69}, 0.0, True),
+        # after the turn the body, 0.5 mm of standing metal, must have passed too: 2.8333 mm = 3.2483 deg
+        ({"after_music_deg": 3.24, "before_music_deg": 30}, (360 - 33.24) / 6, False),
+        ({"after_music_deg": 3.26, "before_music_deg": 30}, (360 - 33.26) / 6, True),
+    ],
+)
+def test_the_rest_sector_is_judged_by_arc(changes: dict[str, float], sounds_s: float, clear: bool) -> None:  # noqa: FBT001 - a parametrised verdict
+    findings = rest_is_clear(disc_of(movement_with(changes), [(1, sounds_s)]))
+
+    assert (findings == []) is clear
+    if not clear:
+        assert findings[0].code is Code.REST_NOT_CLEAR
+        assert findings[0].measured == pytest.approx(-0.01, abs=0.02)
+        assert "At rest the working edge of a projection on track 1 stands" in findings[0].message
+
+
+def test_an_inner_track_needs_a_wider_rest_than_an_outer_one() -> None:
+    # 2 deg: 3.49 mm on radius 100 is clear of 2.3333 mm; 1.75 mm on radius 50 is not
+    movement = movement_with({"before_music_deg": 2.0})
+
+    findings = rest_is_clear(disc_of(movement, [(1, 0.0), (3, 0.0)]))
+
+    assert [finding.at.tracks for finding in findings] == [(1,)]
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_rest_sectors_of_the_shipped_movements_are_wide_enough_on_every_track(movement: Movement) -> None:
+    free_s = movement.revolution_s * (360 - movement.before_music_deg - movement.after_music_deg) / 360
+    first = disc_of(movement, [(track.track, 0.0) for track in movement.tracks])
+    last = disc_of(movement, [(track.track, free_s) for track in movement.tracks])
+
+    assert rest_is_clear(first) == []
+    assert rest_is_clear(last) == []
+
+
+def test_a_tune_the_comb_cannot_play_is_an_error_that_says_why() -> None:
+    left_out = (LeftOut(note=0, reason="no-such-pitch"), LeftOut(note=1, reason="ruled-out"))
+
+    [finding] = check(disc_of(PLAIN, []), arrangement_of([], left_out))
+
+    assert finding.code is Code.NOTHING_TO_PLAY
+    assert finding.level is Level.ERROR
+    assert finding.message == (
+        "Nothing on this disc would sound on plain-3: every note is left out (no-such-pitch, ruled-out)."
+    )
+
+
+def test_a_tune_without_notes_is_an_error() -> None:
+    [finding] = something_plays(arrangement_of([]), disc_of(PLAIN, []))
+
+    assert "the tune holds no notes" in finding.message
+
+
+def test_music_longer_than_the_turn_is_an_error_with_its_length() -> None:
+    arrangement = arrangement_of([(1, 0.0), (1, 49.0)], (LeftOut(note=2, reason="past-the-turn"),))
+
+    [finding] = music_fits_the_turn(arrangement, disc_of(PLAIN, [(1, 0.0), (1, 49.0)]))
+
+    assert finding.code is Code.MUSIC_TOO_LONG
+    assert finding.limit == pytest.approx(50.0)
+    assert "one turn of plain-3 has 50.00 s for it, so 1 notes fall past the turn" in finding.message
+    assert '"speed": {"mode": "fit"}' in finding.remedy
+
+
+def test_music_that_fits_passes() -> None:
+    disc = disc_of(PLAIN, [(1, 0.0), (1, 49.0)])
+
+    assert music_fits_the_turn(arrangement_of([(1, 0.0), (1, 49.0)]), disc) == []
+    assert math.isclose(disc.turning.free_turn_s, 50.0)

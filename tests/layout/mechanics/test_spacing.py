@@ -1,0 +1,99 @@
+import math
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from layout.documents import Cutter, Movement
+from layout.mechanics.projection import pattern_of
+from layout.mechanics.spacing import Spacing, spacing_of, webs_mm
+from layout.mechanics.turning import turning_of
+from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, movement_with
+
+FERNHOLLOW, MOSSBROOK, TARNLIGHT = SHIPPED
+
+
+def spacing(movement: Movement, cutter: Cutter = LASER) -> Spacing:
+    return spacing_of(movement, turning_of(movement), pattern_of(movement, cutter), cutter.min_web_mm)
+
+
+@pytest.mark.parametrize(
+    ("movement", "inner_s", "outer_s"),
+    # arc / (2 pi sqrt(r² - d²)) * T: 3.2/(2 pi 36) 66; 3.2/(2 pi 114.6) 66; 3.5/(2 pi sqrt(45² - 1.5²)) 90; ...
+    [(FERNHOLLOW, 0.9337, 0.2933), (MOSSBROOK, 1.1147, 0.2387), (TARNLIGHT, 1.0186, 0.3801)],
+    ids=lambda value: getattr(value, "id", ""),
+)
+def test_the_star_wheel_sets_the_least_repeat_of_the_shipped_movements(
+    movement: Movement, inner_s: float, outer_s: float
+) -> None:
+    least_s = spacing(movement).least_rad * movement.revolution_s / (2 * math.pi)
+
+    assert least_s[0] == pytest.approx(inner_s, abs=5e-5)
+    assert least_s[-1] == pytest.approx(outer_s, abs=5e-5)
+
+
+def test_the_damper_sets_the_repeat_where_it_is_slow() -> None:
+    movement = movement_with({"damper_recovery_s": 2.0})
+
+    # 2 s of a 60 s turn: 12 degrees on every track
+    assert spacing(movement).least_rad == pytest.approx([math.radians(12)] * 3)
+
+
+def test_an_undamped_tooth_has_no_damper_to_wait_for() -> None:
+    movement = movement_with({"damper_recovery_s": 2.0, "teeth/0/damped": False})
+
+    # 3.2 mm on radius 50
+    assert spacing(movement).least_rad[0] == pytest.approx(3.2 / 50)
+
+
+def test_the_web_sets_the_repeat_where_the_metal_must_be_wide() -> None:
+    movement, cutter = movement_with(), cutter_with({"min_web_mm": 2.0})
+    here = spacing(movement, cutter)
+    turning, pattern = turning_of(movement), pattern_of(movement, cutter)
+    first = np.column_stack([turning.radius_mm, np.zeros(3)])
+
+    webs = webs_mm(turning, pattern, first, np.column_stack([turning.radius_mm, here.least_rad]))
+
+    assert (here.web_rad > here.wheel_rad).all()
+    assert webs == pytest.approx([2.0, 2.0, 2.0], abs=1e-9)
+
+
+@pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_neighbouring_tracks_of_the_shipped_movements_can_sound_together(movement: Movement, cutter: Cutter) -> None:
+    assert spacing(movement, cutter).between == ()
+
+
+@given(
+    pitch_mm=st.floats(2.1, 3.5),
+    radius_mm=st.floats(20, 100),
+    offset_deg=st.floats(-8, 8),
+    turns=st.sampled_from(["clockwise", "anticlockwise"]),
+)
+def test_two_tracks_are_too_near_exactly_within_the_stated_angles(
+    pitch_mm: float, radius_mm: float, offset_deg: float, turns: str
+) -> None:
+    tracks = [{"track": 1, "radius_mm": radius_mm}, {"track": 2, "radius_mm": radius_mm + pitch_mm}]
+    teeth = [{"tooth": number, "track": number, "pitch": "C5"} for number in (1, 2)]
+    movement = movement_with({"tracks": tracks, "teeth": teeth, "turns": turns})
+    turning, pattern = turning_of(movement), pattern_of(movement, LASER)
+    pairs = spacing(movement).between
+
+    apart_rad = math.radians(offset_deg)
+    web = webs_mm(turning, pattern, np.array([[radius_mm, 1.0]]), np.array([[radius_mm + pitch_mm, 1.0 + apart_rad]]))[
+        0
+    ]
+
+    inside = any(pair.from_rad < apart_rad < pair.to_rad for pair in pairs)
+    assert inside == (web < LASER.min_web_mm) or abs(web - LASER.min_web_mm) < 1e-6
+
+
+def test_the_reason_of_a_repeat_is_the_first_thing_that_forbids_it() -> None:
+    movement = movement_with({"damper_recovery_s": 2.0})
+    here = spacing(movement, cutter_with({"min_web_mm": 12.0}))
+
+    # on radius 50 the wheel needs 3.2 mm = 3.67 deg, the damper 12 deg, the web more than 12 mm = 13.75 deg
+    assert here.reason(0, math.radians(3)) == "wheel-still-stepping"
+    assert here.reason(0, math.radians(11)) == "damper-not-recovered"
+    assert here.reason(0, math.radians(13)) == "web"

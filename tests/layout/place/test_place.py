@@ -1,0 +1,51 @@
+import math
+
+import numpy as np
+import pytest
+
+from layout.place import place
+from layout.play import play
+from tests.layout.examples import LASER, PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
+
+
+def test_projection_i_is_pluck_i() -> None:
+    arrangement = arrangement_of([(3, 10.0), (1, 0.0), (2, 20.0)])
+
+    disc = place(arrangement, PLAIN, LASER)
+
+    # 30 deg before the music, then 6 deg a second
+    np.testing.assert_allclose(np.degrees(disc.edge_angle_rad), [90, 30, 150])
+    assert disc.radius_mm.tolist() == [100, 50, 60]
+
+
+def test_no_plucks_give_a_disc_without_projections() -> None:
+    disc = place(arrangement_of([]), PLAIN, LASER)
+
+    assert disc.projection_count == 0
+    assert len(play(disc).sounds_s) == 0
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_moving_one_note_moves_one_projection_and_nothing_else(movement: object) -> None:
+    plucks = [(1, 2.0), (5, 2.0), (9, 11.5), (17, 30.0)]
+    moved = [(1, 2.0), (5, 2.0), (9, 11.75), (17, 30.0)]
+
+    before = place(arrangement_of(plucks), movement, LASER)  # type: ignore[arg-type] - parametrised movements
+    after = place(arrangement_of(moved), movement, LASER)  # type: ignore[arg-type] - parametrised movements
+
+    turned = np.angle(np.exp(1j * (after.edge_angle_rad - before.edge_angle_rad)))
+    expected = after.turning.direction * 2 * math.pi * 0.25 / after.movement.revolution_s
+    np.testing.assert_allclose(turned, [0, 0, expected, 0], atol=1e-12)
+
+
+def test_a_damped_tooth_is_silent_while_its_damper_is_touched() -> None:
+    # damper arc 1 mm on radius 50 at 60 s a turn: 60 / (2 pi 50) = 0.190986 s
+    plucks = play(disc_of(PLAIN, [(1, 5.0)]))
+
+    assert plucks.sounds_s[0] - plucks.silent_from_s[0] == pytest.approx(0.190986, abs=1e-6)
+
+
+def test_an_undamped_tooth_is_never_silenced() -> None:
+    plucks = play(disc_of(movement_with({"teeth/0/damped": False}), [(1, 5.0)]))
+
+    assert plucks.silent_from_s[0] == plucks.sounds_s[0]
