@@ -21,7 +21,7 @@ from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 _HALVINGS = 50  # of an interval under one turn: ends below 1e-14 rad, the grain of a double
-_SCAN_STEPS = 96  # places tried over the stretch where two openings can pass each other
+_SCAN_STEPS = 400  # places tried over the stretch where two openings can pass each other
 
 WebAt = Callable[[FloatArray], FloatArray]
 Reason = Literal["wheel-still-stepping", "damper-not-recovered", "web"]
@@ -35,7 +35,7 @@ class Spacing:
         wheel_rad: Shape (tracks,). The star wheel's step: arc/(r·cos δ).
         damper_rad: Shape (tracks,). The damper's recovery at the fastest turn; 0 where undamped.
         web_rad: Shape (tracks,). Where the openings' web reaches the cutter's least.
-        between: Pairs of tracks whose openings may come too near.
+        between: Stretches of angle in which the openings of two tracks come too near; a pair may have several.
     """
 
     wheel_rad: FloatArray
@@ -57,7 +57,7 @@ class Spacing:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class TooNear:
-    """Two tracks, and the angles from the inner's working edge to the outer's at which their web is too thin."""
+    """Two tracks, and a stretch of angles from the inner's working edge to the outer's where the web is too thin."""
 
     inner_index: int
     outer_index: int
@@ -120,20 +120,18 @@ def _web_angles_rad(turning: Turning, pattern: Pattern, min_web_mm: float) -> Fl
 def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tuple[TooNear, ...]:
     across_mm = float(np.ptp(pattern.core_points_mm[:, 1])) + 2 * pattern.core_round_mm
     along_mm = float(np.ptp(pattern.core_points_mm[:, 0])) + 2 * pattern.core_round_mm
-    pairs = []
+    pairs: list[TooNear] = []
     for inner in range(len(turning.radius_mm)):
         for outer in range(inner + 1, len(turning.radius_mm)):
             gap_mm = turning.radius_mm[outer] - turning.radius_mm[inner] - across_mm
             # Straight openings on a circle lean outwards by their length squared over twice the radius.
             if gap_mm - along_mm**2 / turning.radius_mm[inner] >= min_web_mm:
                 break
-            found = _too_near(turning, pattern, min_web_mm, (inner, outer))
-            if found is not None:
-                pairs.append(found)
+            pairs += _too_near(turning, pattern, min_web_mm, (inner, outer))
     return tuple(pairs)
 
 
-def _too_near(turning: Turning, pattern: Pattern, min_web_mm: float, pair: tuple[int, int]) -> TooNear | None:
+def _too_near(turning: Turning, pattern: Pattern, min_web_mm: float, pair: tuple[int, int]) -> list[TooNear]:
     inner_mm, outer_mm = (float(turning.radius_mm[index]) for index in pair)
     along_mm = float(np.ptp(pattern.core_points_mm[:, 0])) + 2 * pattern.core_round_mm + min_web_mm
     reach_rad = min(2 * along_mm / inner_mm, math.pi)
@@ -145,13 +143,17 @@ def _too_near(turning: Turning, pattern: Pattern, min_web_mm: float, pair: tuple
 
     scan = np.linspace(-reach_rad, reach_rad, _SCAN_STEPS)
     bad = np.flatnonzero(web_mm(scan) < min_web_mm)
-    if not len(bad):
-        return None
-    ends = [
-        _edge_rad(web_mm, min_web_mm, float(scan[max(bad[0] - 1, 0)]), float(scan[bad[0]])),
-        _edge_rad(web_mm, min_web_mm, float(scan[min(bad[-1] + 1, len(scan) - 1)]), float(scan[bad[-1]])),
+    # Corners may pass too near while the flat sides between them do not: each stretch counts for itself.
+    stretches = np.split(bad, np.flatnonzero(np.diff(bad) > 1) + 1) if len(bad) else []
+    return [
+        TooNear(
+            inner_index=pair[0],
+            outer_index=pair[1],
+            from_rad=_edge_rad(web_mm, min_web_mm, float(scan[max(run[0] - 1, 0)]), float(scan[run[0]])),
+            to_rad=_edge_rad(web_mm, min_web_mm, float(scan[min(run[-1] + 1, len(scan) - 1)]), float(scan[run[-1]])),
+        )
+        for run in stretches
     ]
-    return TooNear(inner_index=pair[0], outer_index=pair[1], from_rad=min(ends), to_rad=max(ends))
 
 
 def _edge_rad(web_mm: WebAt, min_web_mm: float, good_rad: float, bad_rad: float) -> float:
