@@ -1,0 +1,92 @@
+"""From a disc to its cut plan."""
+
+from dataclasses import dataclass
+
+import shapely
+
+from layout.cut.blank import holes, rim
+from layout.cut.marks import index_mark, lettering
+from layout.cut.mirroring import mirrored, mirrored_points_mm
+from layout.cut.plan import CutPlan, Drawing, Entity, Outlines
+from layout.cut.projections import cut_projections, cutting_order, formed_projections, struck_at_mm
+from layout.cut.room import Rooms, rooms_of
+from layout.cut.wording import Words, head_lines, lettering_lines
+from layout.mechanics.arrays import IntArray
+from layout.place.disc import Disc
+
+
+def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None) -> CutPlan:
+    """The two drawings of a disc, as drawn, and the order of cutting.
+
+    What is marked comes first, while the blank lies still; then inside before outside: projections
+    by track and angle, feature holes, centre hole; the rim last, since it sets the disc free. Lances
+    come after the holes, so that no hole is struck beside formed metal (common practice: formed
+    hits last). Drawings from the star side are mirrored in Y, but for the lettering, which reads
+    right on the side drawn.
+
+    Args:
+        disc: The disc; one without projections gives the bare blank.
+        title: The tune's title; drawn in ASCII, and shortened where it is engraved.
+        fingerprint: Of all inputs.
+        not_good: The reason for which a disc with error-level findings is cut all the same, else None.
+    """
+    order = cutting_order(disc)
+    at_mm = struck_at_mm(disc, order)
+    mirror = -1 if disc.cutter.drawn_from == "star-side" else 1
+    marking = _marking(disc, mirror)
+    cut = _cut(disc, order)
+    drawings = [
+        _drawing(marking, entities, Words(title=title, fingerprint=fingerprint, not_good=not_good, is_record=is_record))
+        for is_record, entities in ((False, cut), (True, (*formed_projections(disc, order), *cut)))
+    ]
+    return CutPlan(
+        title=title,
+        fingerprint=fingerprint,
+        drawn_from=disc.cutter.drawn_from,
+        not_good=not_good,
+        disc=drawings[0],
+        record=drawings[1],
+        order=order,
+        at_mm=at_mm if mirror > 0 else mirrored_points_mm(at_mm),
+        tool=disc.pattern.tool,
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Marking:
+    """What the marks of both drawings share: the disc, the index mark and the room beside it, as drawn."""
+
+    disc: Disc
+    rooms: Rooms
+    mark: Outlines | None
+    mirror: int
+
+
+def _marking(disc: Disc, mirror: int) -> _Marking:
+    rooms, rim_mm = rooms_of(disc), disc.movement.disc.outer_diameter_mm / 2
+    mark = index_mark(rooms, rim_mm=rim_mm, direction=disc.turning.direction)
+    if mark is not None:
+        rooms = rooms.without(shapely.LineString(mark.points_mm[0]))
+    return _Marking(disc=disc, rooms=rooms if mirror > 0 else rooms.mirrored(), mark=mark, mirror=mirror)
+
+
+def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
+    projections, blank = cut_projections(disc, order), holes(disc.movement)
+    inner = (*blank, *projections) if disc.pattern.making == "lance" else (*projections, *blank)
+    return (*inner, rim(disc.movement))
+
+
+def _drawing(marking: _Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
+    disc = marking.disc
+    rim_mm = disc.movement.disc.outer_diameter_mm / 2
+    letters = lettering(marking.rooms, lettering_lines(disc, words), rim_mm=rim_mm)
+    marks = () if marking.mark is None else (marking.mark,)
+    drawn = [_as_drawn(entity, marking.mirror) for entity in (*marks, *entities)]
+    return Drawing(
+        entities=(*drawn[: len(marks)], *letters, *drawn[len(marks) :]),
+        comments=head_lines(disc, words),
+    )
+
+
+def _as_drawn(entity: Entity, mirror: int) -> Entity:
+    return entity if mirror > 0 else mirrored(entity)
