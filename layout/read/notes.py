@@ -6,10 +6,14 @@ track each, with their note-offs beside their note-ons. Both are honoured:
 
 1. Within a track, a note-off ends the oldest note of its channel and pitch still sounding. A second
    note-on of a sounding pitch leaves the first one sounding.
-2. A note-off that found none in its own track ends the oldest note of its channel and pitch that
-   no track has ended and that begins at or before it. So a note-off in another track ends its note,
-   and a note-off written just before the note-on of the same tick gives a note of no length.
-3. What is left lasts to the end of the sequence.
+2. Some programs sort a tick's note-offs before its note-ons, and so write a note of no length (a
+   grace note) backwards. Such a note-off, which ends nothing, is the note's own if another note-on
+   of the pitch comes before any other note-off; else every later note of the pitch would be ended
+   by the note-off of the next.
+3. A note-off that found none in its own track ends the oldest note of its channel and pitch that
+   no track has ended and that begins in its tick or before. So a note-off in another track ends its
+   note, and a last note written backwards has no length.
+4. What is left lasts to the end of the sequence.
 """
 
 from collections import defaultdict, deque
@@ -58,6 +62,8 @@ class NoteCollector:
         if key >> 7 == _PERCUSSION:
             self.percussion_count += velocity > 0
         elif velocity:
+            if self._sounding[key]:
+                self._end_backward_note(key)
             self._sounding[key].append(len(self.key))
             self.onset_tick.append(tick)
             self.end_tick.append(_SOUNDING)
@@ -71,6 +77,13 @@ class NoteCollector:
         else:
             self._loose_offs[key].append(tick)
 
+    def _end_backward_note(self, key: int) -> None:
+        """End the one note of a key that sounds, if it was written backwards (rule 2)."""
+        sounding, loose_offs = self._sounding[key], self._loose_offs[key]
+        onset_tick = self.onset_tick[sounding[0]]
+        if len(sounding) == 1 and loose_offs and loose_offs[-1] == onset_tick:
+            self.end_tick[sounding.popleft()] = loose_offs.pop()
+
     def end_track(self) -> None:
         """Close the track: what it leaves sounding waits for the note-offs of the other tracks."""
         for key, notes in self._sounding.items():
@@ -79,7 +92,7 @@ class NoteCollector:
         self._sounding.clear()
 
     def end_sequence(self, last_tick: int, oddities: Oddities) -> None:
-        """End every note that still sounds, by rules 2 and 3 above.
+        """End every note that still sounds, by rules 3 and 4 above.
 
         Args:
             last_tick: Where the longest track of the sequence ends.

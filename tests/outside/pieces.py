@@ -1,0 +1,70 @@
+"""Public-domain pieces as MIDI files, for tests that want real music."""
+
+import warnings
+from functools import cache
+from typing import NamedTuple
+
+from music21 import converter, corpus
+from music21.midi.translate import streamToMidiFile
+
+
+class Piece(NamedTuple):
+    """A piece of the corpus that the music21 library ships, and why it is in the public domain."""
+
+    name: str
+    work: str
+    origin: str
+
+
+# Every composer died before 1925, or the tune is traditional and was printed before 1900.
+_PIECES = (
+    Piece("bach chorale 66.6", "bach/bwv66.6", "J. S. Bach, died 1750"),
+    Piece("bach chorale 269", "bach/bwv269", "J. S. Bach, died 1750"),
+    Piece("bach prelude and fugue 846", "bach/bwv846", "J. S. Bach, died 1750"),
+    Piece("corelli grave", "corelli/opus3no1/1grave", "A. Corelli, died 1713"),
+    Piece("cpe bach 186", "cpebach/h186", "C. P. E. Bach, died 1788"),
+    Piece("mozart sonata exposition", "mozart/k545/movement1_exposition", "W. A. Mozart, died 1791"),
+    Piece("schubert lindenbaum", "schubert/Lindenbaum", "F. Schubert, died 1828"),
+    Piece("schumann song", "schumann_robert/opus48no2", "R. Schumann, died 1856"),
+    Piece("foster song", "leadSheet/fosterBrownHair", "S. Foster, died 1864"),
+    Piece("verdi canzone", "verdi/laDonnaEMobile", "G. Verdi, died 1901"),
+    Piece("joplin rag", "joplin/maple_leaf_rag", "S. Joplin, died 1917"),
+    Piece("liliuokalani song", "liliuokalani/aloha_oe", "Queen Liliuokalani, died 1917"),
+    Piece("acacia reel", "ryansMammoth/AcaciaReel", "traditional, in a collection printed in 1883 (from memory)"),
+    Piece(
+        "acrobats hornpipe",
+        "ryansMammoth/AcrobatsHornpipe",
+        "traditional, in a collection printed in 1883 (from memory)",
+    ),
+)
+
+PIECE_NAMES = tuple(piece.name for piece in _PIECES)
+
+
+@cache
+def public_domain_pieces() -> dict[str, bytes]:
+    """Fourteen pieces of 20 s to 130 s by name, as format 1 MIDI files written by music21.
+
+    The compositions are in the public domain: every composer died before 1925, or the tune is
+    traditional and was printed before 1900 (who and when stands beside each in this module). The
+    encodings are those the installed library ships; none is kept here.
+
+    The bytes are the same on every call and in every process. About ten seconds, once a process;
+    do not change the dictionary.
+    """
+    return {piece.name: _midi_bytes(piece.work) for piece in _PIECES}
+
+
+def _midi_bytes(work: str) -> bytes:
+    """A work of the corpus as a MIDI file.
+
+    music21's remarks about odd notation in its own corpus are nothing to the tests that use the
+    pieces, so its warnings are kept quiet here, and here only.
+    """
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        # Not from the library's own cache of pickles, nor into it: nothing outside the process is touched.
+        stream = converter.parse(corpus.getWork(work), forceSource=True, storePickle=False)
+        written = streamToMidiFile(stream).writestr()
+    assert isinstance(written, bytes)
+    return written
