@@ -1,0 +1,79 @@
+"""An empty DXF document, and its bytes: the same on every run and machine.
+
+ezdxf stamps a document with the time, random identifiers and its own version whenever its `write`
+is called, unless a switch of the whole process is set. So `write` is not called here: its three
+steps are taken one by one, and between them the stamps are put right on this one document.
+"""
+
+import io
+import textwrap
+from datetime import datetime
+
+from ezdxf.document import CONST_GUID, EZDXF_META, Drawing
+from ezdxf.filemanagement import new
+from ezdxf.lldxf.tagwriter import TagWriter
+from ezdxf.tools.juliandate import juliandate
+from ezdxf.units import MM
+
+from layout.mechanics.arrays import FloatArray
+from layout.write.plain_text import dxf_text
+
+_COMMENT = "999\n{}\n"  # DXF reference: group code 999 is a comment, may stand before the sections
+_COMMENT_WIDTH = 200  # characters; a DXF line of R2010 holds 2049 bytes, seven for one character at most
+_NO_MOMENT = juliandate(datetime(2000, 1, 1))  # any fixed day; a drawing is older than none of its inputs
+_MOMENTS = ("$TDCREATE", "$TDUCREATE", "$TDUPDATE", "$TDUUPDATE")
+_IDENTIFIERS = ("$FINGERPRINTGUID", "$VERSIONGUID")
+_DECIMAL_LENGTHS, _DECIMAL_DEGREES = 2, 0  # $LUNITS, $AUNITS
+_DECIMALS_SHOWN = 3  # $LUPREC, $AUPREC: what a drawing program shows, not what the file holds
+
+
+def new_document(extents_mm: FloatArray) -> Drawing:
+    """An empty R2010 document in millimetres, with nothing but the layer 0.
+
+    Args:
+        extents_mm: Shape (2, 2). Corners of what will be drawn; the view opens on them.
+    """
+    document = new("R2010", units=MM)
+    document.layers.remove("Defpoints")  # made by ezdxf for dimensions, of which we draw none
+    header = document.header
+    header["$MEASUREMENT"] = 1
+    header["$LUNITS"], header["$AUNITS"] = _DECIMAL_LENGTHS, _DECIMAL_DEGREES
+    header["$LUPREC"], header["$AUPREC"] = _DECIMALS_SHOWN, _DECIMALS_SHOWN
+    lower, upper = extents_mm.tolist()
+    space = document.modelspace()
+    space.reset_extents((*lower, 0), (*upper, 0))
+    space.reset_limits(lower, upper)
+    middle, size = extents_mm.mean(axis=0).tolist(), float(max(extents_mm[1] - extents_mm[0]))
+    document.set_modelspace_vport(height=size or 1.0, center=middle)
+    return document
+
+
+def bytes_of(document: Drawing, comments: tuple[str, ...]) -> bytes:
+    """The document as ASCII DXF, with the comments at its head.
+
+    Args:
+        document: A document of new_document, drawn in.
+        comments: Lines of text; long ones are broken.
+    """
+    document.commit_pending_changes()
+    document.update_all()
+    _unstamp(document)
+    text = io.StringIO()
+    for comment in comments:
+        for line in textwrap.wrap(comment, _COMMENT_WIDTH):
+            text.write(_COMMENT.format(dxf_text(line)))
+    document.export_sections(TagWriter(text, write_handles=True, dxfversion=document.dxfversion))
+    return text.getvalue().encode("ascii")
+
+
+def _unstamp(document: Drawing) -> None:
+    header = document.header
+    for name in _MOMENTS:
+        header[name] = _NO_MOMENT
+    for name in _IDENTIFIERS:
+        header[name] = CONST_GUID
+    header["$LASTSAVEDBY"] = "discwright"
+    meta = document.rootdict.get_required_dict(EZDXF_META)
+    document.rootdict.discard(EZDXF_META)
+    document.objects.delete_entity(meta)  # and with it the entries it owns
+    document.appids.remove("EZDXF")

@@ -1,0 +1,141 @@
+"""The sheet the picture stands on: its units, and the ways anything is put on it."""
+
+import unicodedata
+from dataclasses import dataclass
+from typing import Literal
+
+import svgwrite
+from svgwrite.base import Desc, Title
+from svgwrite.shapes import Rect
+from svgwrite.text import Text
+
+from layout.write.numbers import number
+from layout.write.plain_text import one_line
+from layout.write.svg_style import BLACK, FONT, WHITE
+
+PAGE_PER_DISC = 1.14  # the page's width in disc diameters: room for the turning arrow
+HUNDRED = 100.0
+_HALF_ROOM = 47.0  # hundredths of the page's width, from its middle
+_DECIMALS = 3  # of a millimetre, for what is not an outline
+_NARROW, _MIDDLE, _BROAD, _FULL = 0.36, 0.61, 0.74, 1.0  # em; rather too wide, since fonts differ
+_BOLD = 1.16
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Page:
+    """The page's scale: the disc's centre is the origin, x to the right, y down, millimetres.
+
+    Attributes:
+        width_mm: Of the whole page.
+        disc_radius_mm: Of the disc on it.
+    """
+
+    width_mm: float
+    disc_radius_mm: float
+
+    def units_mm(self, units: float) -> float:
+        """So many hundredths of the page's width."""
+        return self.width_mm * units / HUNDRED
+
+    def units(self, units: float) -> str:
+        """The same, as text."""
+        return short(self.units_mm(units))
+
+    @property
+    def left_mm(self) -> float:
+        """Left edge of what is written."""
+        return -self.units_mm(_HALF_ROOM)
+
+    @property
+    def room_mm(self) -> float:
+        """Width of what is written, from the left edge to the right one."""
+        return self.units_mm(2 * _HALF_ROOM)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Face:
+    """How a line of text is set: its size, weight, colour, and which part of it stands at its place."""
+
+    size_mm: float
+    bold: bool = False
+    colour: str = BLACK
+    anchor: Literal["start", "middle", "end"] = "start"
+
+
+def page_for(disc_diameter_mm: float) -> Page:
+    """The page for a disc of this diameter, at natural size."""
+    return Page(width_mm=disc_diameter_mm * PAGE_PER_DISC, disc_radius_mm=disc_diameter_mm / 2)
+
+
+def short(value_mm: float) -> str:
+    """A place on the page as text, to a micrometre."""
+    return number(value_mm, _DECIMALS)
+
+
+def new_drawing(page: Page, top_mm: float, bottom_mm: float) -> svgwrite.Drawing:
+    """An empty picture from top_mm down to bottom_mm, on white."""
+    width, height = short(page.width_mm), short(bottom_mm - top_mm)
+    left, top = short(-page.width_mm / 2), short(top_mm)
+    drawing = svgwrite.Drawing(
+        size=(f"{width}mm", f"{height}mm"), viewBox=f"{left} {top} {width} {height}", debug=False, font_family=FONT
+    )
+    drawing.add(Rect(insert=(left, top), size=(width, height), fill=WHITE, debug=False))
+    return drawing
+
+
+def describe(drawing: svgwrite.Drawing, title: str, description: str) -> None:
+    """Gives the picture the name and the description that screen readers read."""
+    texts = (Title(one_line(title)), Desc(one_line(description)))
+    for text, name in zip(texts, ("title", "description"), strict=True):
+        text.xml.set("id", name)
+    drawing.elements[:0] = texts
+    drawing["role"] = "img"
+    drawing["aria-labelledby"] = "title description"
+
+
+def words(text: str, at_mm: tuple[float, float], face: Face) -> Text:
+    """A line of text with its base line at at_mm."""
+    return Text(
+        one_line(text),
+        insert=(short(at_mm[0]), short(at_mm[1])),
+        font_size=short(face.size_mm),
+        font_weight="bold" if face.bold else None,
+        fill=face.colour,
+        text_anchor=None if face.anchor == "start" else face.anchor,
+        debug=False,
+    )
+
+
+def text_width_mm(text: str, face: Face) -> float:
+    """About how wide a line of text is, rather more than less: the font is the viewer's."""
+    widths = 0.0
+    for character in text:
+        if unicodedata.east_asian_width(character) in {"W", "F"}:
+            widths += _FULL
+        elif character in "ijltfrI.,;:'|!()[] ":
+            widths += _NARROW
+        else:
+            widths += _BROAD if character.isupper() or character in "mwMW—…@%" else _MIDDLE
+    return widths * face.size_mm * (_BOLD if face.bold else 1.0)
+
+
+def shortened(text: str, face: Face, room_mm: float) -> str:
+    """The text, cut with "…" where it does not fit."""
+    plain = one_line(text)
+    if text_width_mm(plain, face) <= room_mm:
+        return plain
+    while plain and text_width_mm(plain + "…", face) > room_mm:
+        plain = plain[:-1]
+    return plain.rstrip() + "…"
+
+
+def wrapped(text: str, face: Face, room_mm: float) -> list[str]:
+    """The text broken between words into lines that fit; a word that is too long alone is cut."""
+    lines: list[str] = []
+    for word in one_line(text).split(" "):
+        longer = f"{lines[-1]} {word}" if lines else word
+        if lines and text_width_mm(longer, face) <= room_mm:
+            lines[-1] = longer
+        else:
+            lines.append(shortened(word, face, room_mm))
+    return lines

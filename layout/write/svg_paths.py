@@ -1,0 +1,74 @@
+"""Entities of a drawing as SVG path data and circles, in the picture's own coordinates (x, −y)."""
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from layout.cut.plan import Circles, Entity, Lettering, Outlines, Points
+from layout.mechanics.arrays import FloatArray
+from layout.write.numbers import number, rounded
+
+
+def path_data(entities: list[Entity]) -> str:
+    """SVG path data of all entities of a layer but its circles; "" where there are none.
+
+    A point becomes a piece without length, which round line ends make a dot.
+    """
+    parts: list[str] = []
+    for entity in entities:
+        match entity:
+            case Outlines():
+                parts += _outlines(entity)
+            case Lettering():
+                parts += [_open_line(rounded(stroke * (1, -1)).tolist()) for stroke in entity.strokes_mm]
+            case Points():
+                parts += [f"M{number(x)} {number(y)}h0" for x, y in rounded(entity.points_mm * (1, -1)).tolist()]
+    return "".join(parts)
+
+
+def circles(entities: list[Entity]) -> Iterator[tuple[str, str, str]]:
+    """Centre x, centre y and radius of every circle, as text."""
+    for entity in entities:
+        if isinstance(entity, Circles):
+            centres_mm = rounded(entity.centres_mm * (1, -1)).tolist()
+            for (x, y), radius_mm in zip(centres_mm, entity.radius_mm.tolist(), strict=True):
+                yield number(x), number(y), number(radius_mm)
+
+
+def lines_data(ends_mm: FloatArray) -> str:
+    """SVG path data of straight lines given as shape (n, 2, 2), in drawing coordinates."""
+    return "".join(_open_line(line) for line in rounded(ends_mm * (1, -1)).tolist())
+
+
+def _open_line(points: list[list[float]]) -> str:
+    return "M" + "L".join(f"{number(x)} {number(y)}" for x, y in points)
+
+
+def _outlines(outlines: Outlines) -> Iterator[str]:
+    bulges = outlines.bulges.tolist()
+    pieces = len(bulges) if outlines.closed else len(bulges) - 1
+    turned = rounded(outlines.points_mm * (1, -1)).tolist()
+    for points, radii in zip(turned, _radii_mm(outlines), strict=True):
+        data = [f"M{number(points[0][0])} {number(points[0][1])}"]
+        for place in range(pieces):
+            x, y = points[(place + 1) % len(points)]
+            if bulges[place]:
+                data.append(_arc(radii[place], bulges[place], f"{number(x)} {number(y)}"))
+            elif place + 1 < len(points):  # a straight piece back to the start is drawn by Z
+                data.append(f"L{number(x)} {number(y)}")
+        yield "".join(data) + ("Z" if outlines.closed else "")
+
+
+def _arc(radius_mm: float, bulge: float, end: str) -> str:
+    # Seen with y down, as SVG counts, an anticlockwise arc (bulge above 0) is the one with sweep 0.
+    large, sweep = int(abs(bulge) > 1), int(bulge < 0)
+    return f"A{number(radius_mm)} {number(radius_mm)} 0 {large} {sweep} {end}"
+
+
+def _radii_mm(outlines: Outlines) -> list[list[float]]:
+    """Radius of the arc that starts at each vertex, c(1 + b²)/(4|b|); 0 where the piece is straight."""
+    chord = np.roll(outlines.points_mm, -1, axis=1) - outlines.points_mm
+    bulge = np.abs(outlines.bulges)
+    curve = np.divide(1 + bulge**2, 4 * bulge, out=np.zeros_like(bulge), where=bulge > 0)
+    radii: list[list[float]] = (np.hypot(chord[..., 0], chord[..., 1]) * curve).tolist()
+    return radii

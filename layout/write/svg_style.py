@@ -1,0 +1,80 @@
+"""How the picture of a disc looks: colours, line widths, letter sizes.
+
+Colours are those of Okabe and Ito, "Color Universal Design" (2008), from memory: eight that people
+with any colour vision tell apart. What a colour says is also said by a shape, a line or a word, so
+that a black and white print loses nothing.
+
+Widths and sizes are hundredths of the picture's width, so that a small disc and a large one look
+alike: at 400 pixels across, one unit is 4 pixels; on an A3 sheet, 2.97 mm.
+"""
+
+from dataclasses import dataclass
+from types import MappingProxyType
+
+from layout.check.finding import Level
+from layout.cut.plan import LayerName
+
+BLACK, WHITE = "#000000", "#ffffff"
+ORANGE, SKY_BLUE, BLUISH_GREEN = "#e69f00", "#56b4e9", "#009e73"
+BLUE, VERMILION, REDDISH_PURPLE = "#0072b2", "#d55e00", "#cc79a7"
+SHEET, TRACK_GREY, WORD_GREY = "#f3f2ee", "#b5b3ac", "#55534d"
+
+FONT = "Arial, Helvetica, 'Liberation Sans', 'DejaVu Sans', sans-serif"
+TITLE_SIZE, VERDICT_SIZE, LEAD_SIZE, TEXT_SIZE, SMALL_SIZE = 4.4, 3.6, 2.4, 1.9, 1.6
+EMPHASIS_WIDTH = 0.16  # of working edges
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LayerStyle:
+    """How one layer is drawn; widths and dashes in hundredths of the picture's width.
+
+    Attributes:
+        title: What it is, in the legend and for screen readers.
+        stroke: Line colour, or "none".
+        fill: Colour inside, or "none".
+        line: Line width.
+        dashes: Dash and gap lengths; empty for a full line.
+    """
+
+    title: str
+    stroke: str
+    fill: str
+    line: float
+    dashes: tuple[float, ...] = ()
+
+
+# In painting order, the last on top.
+LAYER_STYLES: MappingProxyType[LayerName, LayerStyle] = MappingProxyType(
+    {
+        "RIM": LayerStyle(title="rim", stroke=BLACK, fill=SHEET, line=0.16),
+        "TRACKS": LayerStyle(title="track", stroke=TRACK_GREY, fill="none", line=0.05),
+        "AFTER_FORMING": LayerStyle(title="opening after forming", stroke="none", fill=SKY_BLUE, line=0.0),
+        "SLITS": LayerStyle(title="slit", stroke=BLUE, fill="none", line=0.035),
+        "SLOTS": LayerStyle(title="slot", stroke=BLUE, fill="none", line=0.06),
+        "FOLDS": LayerStyle(title="fold line", stroke=BLUISH_GREEN, fill="none", line=0.035, dashes=(0.12, 0.08)),
+        "HITS": LayerStyle(title="hit", stroke=REDDISH_PURPLE, fill="none", line=0.18),
+        "HOLES": LayerStyle(title="hole", stroke=BLACK, fill=WHITE, line=0.12),
+        "LEADS": LayerStyle(title="lead-in", stroke=VERMILION, fill="none", line=0.05),
+        "MARKS": LayerStyle(title="engraved mark", stroke=BLACK, fill="none", line=0.09),
+    }
+)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LevelStyle:
+    """How a finding of one level is marked: its word, ring colour, dashes, and the badge of its number."""
+
+    word: str
+    ring: str
+    dashes: tuple[float, ...]
+    badge: str
+    digits: str
+
+
+LEVEL_STYLES: MappingProxyType[Level, LevelStyle] = MappingProxyType(
+    {
+        Level.ERROR: LevelStyle(word="Error", ring=VERMILION, dashes=(), badge=BLACK, digits=WHITE),
+        Level.WARNING: LevelStyle(word="Warning", ring=ORANGE, dashes=(1.0, 0.5), badge=WHITE, digits=BLACK),
+        Level.ADVICE: LevelStyle(word="Advice", ring=BLUISH_GREEN, dashes=(0.3, 0.45), badge=WHITE, digits=BLACK),
+    }
+)
