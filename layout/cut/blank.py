@@ -64,14 +64,14 @@ def _circles(centres_mm: FloatArray, radius_mm: float) -> Circles:
 
 
 def _obround_mm(feature: Feature) -> tuple[FloatArray, FloatArray]:
-    """A slot with round ends, anticlockwise, in the frame of its radius: x along it, y along the tangent."""
+    """A slot with round ends, anticlockwise, at disc angle 0: x along the radius, y along the tangent."""
     end_mm = min(feature.length_mm, feature.width_mm) / 2
     straight_mm = max(feature.length_mm, feature.width_mm) / 2 - end_mm
     along = np.array([(end_mm, straight_mm), (-end_mm, straight_mm), (-end_mm, -straight_mm), (end_mm, -straight_mm)])
     bulges = frozen_floats([HALF_CIRCLE_BULGE, 0.0, HALF_CIRCLE_BULGE, 0.0])
-    if feature.length_mm >= feature.width_mm:
-        return along, bulges
-    return np.stack([along[:, 1], -along[:, 0]], axis=-1), bulges  # longer across: a quarter turn back
+    if feature.length_mm < feature.width_mm:  # longer across: a quarter turn back
+        along = np.stack([along[:, 1], -along[:, 0]], axis=-1)
+    return along + np.array([feature.radius_mm, 0.0]), bulges
 
 
 def rim(movement: Movement) -> Entity:

@@ -37,57 +37,51 @@ def index_mark(rooms: Rooms, *, rim_mm: float, direction: int) -> Outlines | Non
     Returns:
         The mark seen from the label side; None where there is no room at all.
     """
-    outside_mm = np.array([(rooms.tracks_to_mm + rim_mm) / 2])
-    inside_mm = np.arange(rooms.tracks_from_mm, 0.0, -STEP_MM)
+    tracks_from_mm, tracks_to_mm = rooms.tracks_mm
+    outside_mm = np.array([(tracks_to_mm + rim_mm) / 2])
+    inside_mm = np.arange(tracks_from_mm, 0.0, -STEP_MM)
     anywhere_mm = np.arange(rim_mm, 0.0, -STEP_MM)
-    for room, places_mm in (
-        (rooms.seen, outside_mm),
-        (rooms.seen, inside_mm),
-        (rooms.hidden, inside_mm),
-        (rooms.between, anywhere_mm),
-    ):
-        found = _mark_in(room, places_mm, direction)
-        if found is not None:
-            return Outlines(
-                layer="MARKS",
-                points_mm=frozen_floats(found[None]),
-                bulges=frozen_floats([0.0] * len(found)),
-                closed=False,
-            )
-    return None
+    return (
+        _mark_in(rooms.seen(), outside_mm, direction)
+        or _mark_in(rooms.seen(), inside_mm, direction)
+        or _mark_in(rooms.hidden(), inside_mm, direction)
+        or _mark_in(rooms.between(), anywhere_mm, direction)
+    )
 
 
-def _mark_in(room: BaseGeometry, places_mm: FloatArray, direction: int) -> FloatArray | None:
+def _mark_in(room: BaseGeometry, places_mm: FloatArray, direction: int) -> Outlines | None:
     for length_mm in MARK_LENGTHS_MM:
         half_mm = length_mm / 2
         shape = np.array([(-half_mm, 0.0), (half_mm, 0.0), (0.0, -direction * half_mm)])
         marks = shape[None] + np.column_stack([places_mm, np.zeros(len(places_mm))])[:, None, :]
         fits = np.flatnonzero(shapely.covers(room, shapely.linestrings(marks)))
         if len(fits):
-            return np.asarray(marks[fits[0]])
+            bulges = frozen_floats([0.0] * len(shape))
+            return Outlines(layer="MARKS", points_mm=frozen_floats(marks[fits[:1]]), bulges=bulges, closed=False)
     return None
 
 
-def lettering(rooms: Rooms, choices: tuple[Choice, ...], *, rim_mm: float) -> tuple[Lettering, ...]:
+def lettering(rooms: Rooms, choices: tuple[Choice, ...], *, warnings: Choice, rim_mm: float) -> tuple[Lettering, ...]:
     """Lines of letters, as drawn: they read right on the side that is drawn.
 
     Args:
         rooms: Where there is room, as drawn.
         choices: Lines to write, from the fullest choice to the least; the first that fits is taken,
             and what it leaves out is written somewhere else if it fits there.
+        warnings: The lines that may even stand among openings, rather than be missing.
         rim_mm: The disc's radius.
 
     Returns:
-        One Lettering a line; none where not even the last choice fits.
+        One Lettering a line; none where nothing fits.
     """
     centres_mm = _centres_mm(rim_mm)
-    written = _first_that_fits(_attempts(rooms, choices), centres_mm)
+    written = _first_that_fits(_attempts(rooms, choices, warnings), centres_mm)
     if not written:
         return ()
     said = {line.text for line in written}
     rest = tuple(text for text in choices[0] if text not in said)
     taken = shapely.MultiLineString([stroke for line in written for stroke in line.strokes_mm]).envelope
-    seen = rooms.seen.difference(taken.buffer(CLEAR_MM))
+    seen = rooms.seen().difference(taken.buffer(CLEAR_MM))
     return written + _first_that_fits(((seen, rest[:most]) for most in range(len(rest), 0, -1)), centres_mm)
 
 
@@ -106,12 +100,15 @@ def _first_that_fits(attempts: Iterable[tuple[BaseGeometry, Choice]], centres_mm
     return ()
 
 
-def _attempts(rooms: Rooms, choices: tuple[Choice, ...]) -> Iterator[tuple[BaseGeometry, Choice]]:
-    """What to try where: a fuller choice is worth no clamped place, and only the last may stand among openings."""
+def _attempts(rooms: Rooms, choices: tuple[Choice, ...], warnings: Choice) -> Iterator[tuple[BaseGeometry, Choice]]:
+    """What to try where: only the least choices are worth a place that a clamp may hide."""
     written = [lines for lines in choices if lines]
-    yield from ((rooms.seen, lines) for lines in written)
-    yield from ((rooms.hidden, lines) for lines in written[-2:])
-    yield from ((rooms.between, lines) for lines in written[-1:])
+    seen = rooms.seen()
+    yield from ((seen, lines) for lines in written)
+    hidden = rooms.hidden()
+    yield from ((hidden, lines) for lines in written[-2:])
+    if warnings:
+        yield rooms.between(), warnings
 
 
 def _centres_mm(rim_mm: float) -> FloatArray:
@@ -134,10 +131,9 @@ def _block(lines: Choice, height_mm: float) -> list[tuple[FloatArray, ...]]:
 
 
 def _first_fit_mm(room: BaseGeometry, centres_mm: FloatArray, block: list[tuple[FloatArray, ...]]) -> FloatArray | None:
-    fits = np.ones(len(centres_mm), dtype=bool)
+    left_mm = centres_mm
     for strokes in block:
         points = np.concatenate(strokes)
-        low, high = points.min(axis=0) + centres_mm, points.max(axis=0) + centres_mm
-        fits &= shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))
-    first = np.flatnonzero(fits)
-    return np.asarray(centres_mm[first[0]]) if len(first) else None
+        low, high = points.min(axis=0) + left_mm, points.max(axis=0) + left_mm
+        left_mm = left_mm[shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))]
+    return left_mm[0] if len(left_mm) else None

@@ -1,6 +1,6 @@
 """From a disc to its cut plan."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import shapely
 
@@ -9,8 +9,8 @@ from layout.cut.marks import index_mark, lettering
 from layout.cut.mirroring import mirrored, mirrored_points_mm
 from layout.cut.plan import CutPlan, Drawing, Entity, Outlines
 from layout.cut.projections import cut_projections, cutting_order, formed_projections, struck_at_mm
-from layout.cut.room import Rooms, rooms_of
-from layout.cut.wording import Words, head_lines, lettering_lines
+from layout.cut.room import Rooms
+from layout.cut.wording import Words, head_lines, lettering_lines, warnings_of
 from layout.mechanics.arrays import IntArray
 from layout.place.disc import Disc
 
@@ -63,11 +63,11 @@ class _Marking:
 
 
 def _marking(disc: Disc, mirror: int) -> _Marking:
-    rooms, rim_mm = rooms_of(disc), disc.movement.disc.outer_diameter_mm / 2
+    rooms, rim_mm = Rooms(disc=disc), disc.movement.disc.outer_diameter_mm / 2
     mark = index_mark(rooms, rim_mm=rim_mm, direction=disc.turning.direction)
     if mark is not None:
-        rooms = rooms.without(shapely.LineString(mark.points_mm[0]))
-    return _Marking(disc=disc, rooms=rooms if mirror > 0 else rooms.mirrored(), mark=mark, mirror=mirror)
+        rooms = replace(rooms, taken=(shapely.LineString(mark.points_mm[0]),))
+    return _Marking(disc=disc, rooms=replace(rooms, mirror=mirror), mark=mark, mirror=mirror)
 
 
 def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
@@ -79,7 +79,8 @@ def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
 def _drawing(marking: _Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
     disc = marking.disc
     rim_mm = disc.movement.disc.outer_diameter_mm / 2
-    letters = lettering(marking.rooms, lettering_lines(disc, words), rim_mm=rim_mm)
+    choices, warnings = lettering_lines(disc, words), warnings_of(words)
+    letters = lettering(marking.rooms, choices, warnings=warnings, rim_mm=rim_mm)
     marks = () if marking.mark is None else (marking.mark,)
     drawn = [_as_drawn(entity, marking.mirror) for entity in (*marks, *entities)]
     return Drawing(

@@ -1,7 +1,7 @@
 """Where on the disc there is room for marks. Seen from the label side, like the disc itself."""
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 import shapely
@@ -24,52 +24,42 @@ class Rooms:
     """Metal that is free for marks, at least CLEAR_MM from everything it must not touch.
 
     Attributes:
-        seen: Clear of the tracks' band and the keep-out rings.
-        hidden: Clear of the tracks' band; a clamp may hide it in the movement.
-        between: Clear of openings only.
-        tracks_from_mm: Where the tracks' band starts: the innermost opening's nearest point.
-        tracks_to_mm: Where it ends: the outermost opening's farthest point.
+        disc: The disc.
+        taken: What is marked already, seen from the label side.
+        mirror: −1 where the rooms are seen from the star side, else +1.
     """
 
-    seen: BaseGeometry
-    hidden: BaseGeometry
-    between: BaseGeometry
-    tracks_from_mm: float
-    tracks_to_mm: float
+    disc: Disc
+    taken: tuple[BaseGeometry, ...] = ()
+    mirror: int = 1
 
-    def without(self, taken: BaseGeometry) -> "Rooms":
-        """The same, clear of something drawn too."""
-        around = taken.buffer(CLEAR_MM)
-        return replace(
-            self,
-            seen=self.seen.difference(around),
-            hidden=self.hidden.difference(around),
-            between=self.between.difference(around),
-        )
+    @property
+    def tracks_mm(self) -> tuple[float, float]:
+        """The band of the tracks: from the innermost opening's nearest point to the outermost's farthest."""
+        core_mm, round_mm = self.disc.pattern.core_points_mm, self.disc.pattern.core_round_mm
+        radius_mm = self.disc.turning.radius_mm
+        from_mm = float(radius_mm[0] + core_mm[:, 1].min()) - round_mm
+        to_mm = float(np.hypot(radius_mm[-1] + core_mm[:, 1], core_mm[:, 0]).max()) + round_mm
+        return max(from_mm, 0.0), to_mm
 
-    def mirrored(self) -> "Rooms":
-        """The same seen from the other side."""
-        seen, hidden, between = (
-            affinity.scale(room, yfact=-1, origin=(0, 0)) for room in (self.seen, self.hidden, self.between)
-        )
-        return replace(self, seen=seen, hidden=hidden, between=between)
+    def seen(self) -> BaseGeometry:
+        """Clear of the tracks' band and the keep-out rings."""
+        rings = [_ring(ring.from_radius_mm, ring.to_radius_mm) for ring in self.disc.movement.keep_out]
+        return self._left(_ring(*self.tracks_mm), *rings)
 
+    def hidden(self) -> BaseGeometry:
+        """Clear of the tracks' band; a clamp may hide it in the movement."""
+        return self._left(_ring(*self.tracks_mm))
 
-def rooms_of(disc: Disc) -> Rooms:
-    """The rooms of a disc; any of them may be empty."""
-    core_mm, round_mm = disc.pattern.core_points_mm, disc.pattern.core_round_mm
-    from_mm = float(disc.turning.radius_mm[0] + core_mm[:, 1].min()) - round_mm
-    to_mm = float(np.hypot(disc.turning.radius_mm[-1] + core_mm[:, 1], core_mm[:, 0]).max()) + round_mm
-    metal = _metal(disc.movement)
-    hidden = metal.difference(_ring(from_mm, to_mm))
-    kept_out = shapely.union_all([_ring(ring.from_radius_mm, ring.to_radius_mm) for ring in disc.movement.keep_out])
-    return Rooms(
-        seen=hidden.difference(kept_out).buffer(-CLEAR_MM),
-        hidden=hidden.buffer(-CLEAR_MM),
-        between=metal.difference(_openings(disc)).buffer(-CLEAR_MM),
-        tracks_from_mm=from_mm,
-        tracks_to_mm=to_mm,
-    )
+    def between(self) -> BaseGeometry:
+        """Clear of openings only."""
+        return self._left(_openings(self.disc))
+
+    def _left(self, *without: BaseGeometry) -> BaseGeometry:
+        free: BaseGeometry = _metal(self.disc.movement).difference(shapely.union_all(without)).buffer(-CLEAR_MM)
+        for mark in self.taken:
+            free = free.difference(mark.buffer(CLEAR_MM))
+        return affinity.scale(free, yfact=self.mirror, origin=(0, 0))
 
 
 def _circle(radius_mm: float) -> BaseGeometry:
@@ -77,7 +67,7 @@ def _circle(radius_mm: float) -> BaseGeometry:
 
 
 def _ring(from_mm: float, to_mm: float) -> BaseGeometry:
-    return _circle(to_mm).difference(_circle(max(from_mm, 0.0)))
+    return _circle(to_mm).difference(_circle(from_mm))
 
 
 def _metal(movement: Movement) -> BaseGeometry:

@@ -60,15 +60,19 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
     return tuple(plain_ascii(line)[:MOST_COMMENT] for line in lines)
 
 
+def warnings_of(words: Words) -> tuple[str, ...]:
+    """The lines that must not be missing, if at all possible."""
+    return (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
+
+
 def lettering_lines(disc: Disc, words: Words) -> tuple[tuple[str, ...], ...]:
     """The lines to engrave, in the choices to try: first all, then ever fewer; the warnings stay longest."""
-    warnings = [RECORD] * words.is_record + [NOT_GOOD] * (words.not_good is not None)
+    warnings = warnings_of(words)
     movement = disc.movement
     telling = [words.title, f"{movement.id} rev {movement.revision}", _side(disc.cutter).upper()]
-    choices = [
-        *([*warnings, *telling[:kept], words.fingerprint] for kept in range(len(telling), -1, -1)),
-        *([warnings] if warnings else []),
-    ]
+    choices = [(*warnings, *telling[:kept], words.fingerprint) for kept in range(len(telling), -1, -1)]
+    if warnings:
+        choices.append(warnings)
     return tuple(tuple(line for text in lines if (line := _shortened(plain_ascii(text)))) for lines in choices)
 
 
