@@ -17,8 +17,8 @@ from layout.mechanics.arrays import BoolArray, IntArray, frozen_ints
 from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
-# Edges are kept this much further apart than they must be, so that who computes the angles again
-# in another order never finds them too near. At 210 mm it is 0.2 nm; far below any cutter.
+# Edges may be this much nearer than their least angle: a repeat asked exactly at its least time is
+# in order, whatever rounding makes of it. At 210 mm it is 0.2 nm; far below any cutter.
 ROUNDING_RAD = 1e-9
 
 _Beside = tuple[int, float, float]  # another track, and where its φ − ours must not lie
@@ -30,7 +30,7 @@ class Board:
     def __init__(self, asked: Asked, turning: Turning, spacing: Spacing) -> None:
         self._spacing = spacing
         self.turned_rad = FULL_TURN_RAD * asked.asked_s / turning.revolution_s
-        self.least_rad: list[float] = (spacing.least_rad + ROUNDING_RAD).tolist()
+        self.least_rad: list[float] = (spacing.least_rad - ROUNDING_RAD).tolist()
         self._turned: list[float] = self.turned_rad.tolist()
         self._edges: list[list[float]] = [[] for _ in self.least_rad]
         self._plucks: list[list[int]] = [[] for _ in self.least_rad]
@@ -66,7 +66,7 @@ class Board:
         apart_rad, other = self._nearest(pluck, track)
         found = []
         if apart_rad < self.least_rad[track]:
-            reason = self._spacing.reason(track, apart_rad - ROUNDING_RAD)
+            reason = self._spacing.reason(track, apart_rad)
             found.append(
                 Conflict(track_index=track, other=other, other_track_index=track, apart_rad=apart_rad, reason=reason)
             )
@@ -135,6 +135,6 @@ def _besides(turning: Turning, spacing: Spacing) -> list[list[_Beside]]:
         release_rad = float(turning.release_rad[outer] - turning.release_rad[inner])
         ends = (turning.direction * (end - release_rad) for end in (pair.from_rad, pair.to_rad))
         low, high = sorted(ends)
-        besides[inner].append((outer, low - ROUNDING_RAD, high + ROUNDING_RAD))
-        besides[outer].append((inner, -high - ROUNDING_RAD, -low + ROUNDING_RAD))
+        besides[inner].append((outer, low + ROUNDING_RAD, high - ROUNDING_RAD))
+        besides[outer].append((inner, -high + ROUNDING_RAD, -low - ROUNDING_RAD))
     return besides

@@ -8,6 +8,7 @@ what still finds room is filled in.
 """
 
 from collections.abc import Iterator
+from itertools import pairwise
 
 import numpy as np
 
@@ -79,10 +80,10 @@ def _plucks_by_key(asked: Asked, board: Board) -> Iterator[tuple[IntArray, list[
     """The plucks of each key that has tracks, in time, and its tracks, fastest first."""
     by_key = np.argsort(asked.key, kind="stable")
     keys, starts = np.unique(asked.key[by_key], return_index=True)
-    for key, plucks in zip(keys.tolist(), np.split(by_key, starts[1:]), strict=True):
+    for key, (start, stop) in zip(keys.tolist(), pairwise([*starts.tolist(), len(by_key)]), strict=True):
         tracks = asked.tracks_of_key.get(key, ())
         if tracks:
-            yield plucks, sorted(tracks, key=lambda track: (board.least_rad[track], -track))
+            yield by_key[start:stop], sorted(tracks, key=lambda track: (board.least_rad[track], -track))
 
 
 def _layers(board: Board, asked: Asked, plucks: IntArray, tracks: list[int]) -> Iterator[tuple[int, int]]:

@@ -1,12 +1,12 @@
 """The best transposition: by weight kept, hopeless ones skipped by an upper bound."""
 
-import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
 
 from layout.arrange.asked import NO_TRACK, Asked, Choose, Chosen, Clash
+from layout.arrange.board import ROUNDING_RAD
 from layout.arrange.comb import Comb
 from layout.arrange.plucks import Wanted
 from layout.arrange.rulings import Forced, Rulings, ruling_error
@@ -100,7 +100,8 @@ def _bound(wanted: Wanted, semitones: int, rules: Rules) -> int:
         if tracks:
             here = wanted.pitch == pitch
             stretch_rad = FULL_TURN_RAD * float(np.ptp(wanted.asked_s[here])) / rules.turning.revolution_s
-            room = sum(math.floor(stretch_rad / rules.spacing.least_rad[track]) + 1 for track in tracks)
+            least_rad = rules.spacing.least_rad[list(tracks)] - ROUNDING_RAD
+            room = int(np.sum(np.floor(stretch_rad / least_rad) + 1))
             total += int(np.sort(wanted.weight[here])[::-1][:room].sum())
     return total
 

@@ -8,6 +8,7 @@ lead channel stated: 1000. The factors are our own choice; the reason stands bes
 
 import heapq
 import math
+from itertools import pairwise
 
 import numpy as np
 
@@ -75,8 +76,8 @@ def _tops(onset_s: FloatArray, ends_s: FloatArray, height: IntArray) -> BoolArra
     """Which notes have the greatest height of those that start with them or are still heard."""
     tops = np.zeros(len(onset_s), dtype=np.bool_)
     heard: list[tuple[int, float]] = []  # (−height, end), the greatest height first
-    starts = np.flatnonzero(np.diff(onset_s, prepend=-math.inf) > 0).tolist()
-    for start, stop in zip(starts, [*starts[1:], len(onset_s)], strict=True):
+    _, starts = np.unique(onset_s, return_index=True)
+    for start, stop in pairwise([*starts.tolist(), len(onset_s)]):
         while heard and heard[0][1] <= onset_s[start]:
             heapq.heappop(heard)
         top = max(height[start:stop].max(), -heard[0][0] if heard else -math.inf)
