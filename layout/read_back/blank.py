@@ -1,0 +1,166 @@
+"""Holes and rim of a drawing against those of the movement."""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+from shapely import affinity
+from shapely.geometry.base import BaseGeometry
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.documents.movement import Feature, Movement
+from layout.read_back.contour import Contour, steps_of_arc
+from layout.read_back.entities import CutDrawing
+from layout.read_back.limits import BLANK_WITHIN_MM, SAME_CUT_MM
+
+_FEWEST_CORNERS = 3
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Edge:
+    """An edge of the blank the movement has: what it is called, its line, and where it is."""
+
+    name: str
+    line: BaseGeometry
+    at: Place
+
+
+def compare_blank(drawing: CutDrawing, movement: Movement) -> list[Finding]:
+    """What of the centre hole, the features and the rim is missing, different, extra or drawn twice."""
+    return _compare(drawing, "HOLES", _holes(movement)) + _compare(drawing, "RIM", [_rim(movement)])
+
+
+def _circle(radius_mm: float) -> BaseGeometry:
+    return shapely.Point(0, 0).buffer(radius_mm, quad_segs=steps_of_arc(radius_mm, math.pi / 2))
+
+
+def _feature_angles_deg(feature: Feature) -> list[float]:
+    return [feature.first_at_deg + 360.0 * place / feature.count for place in range(feature.count)]
+
+
+def _holes(movement: Movement) -> list[_Edge]:
+    edges = [
+        _Edge(name="centre hole", line=_circle(movement.disc.centre_hole_mm / 2).boundary, at=Place(radius_mm=0.0))
+    ]
+    for feature in movement.disc.features:
+        if feature.shape == "notch":
+            continue
+        end_mm = min(feature.width_mm, feature.length_mm) / 2
+        across_mm, along_mm = feature.width_mm / 2 - end_mm, feature.length_mm / 2 - end_mm
+        x = feature.radius_mm
+        middle = shapely.LineString([(x - across_mm, -along_mm), (x + across_mm, along_mm)])
+        shape = middle.buffer(end_mm, quad_segs=steps_of_arc(end_mm, math.pi / 2)).boundary
+        for angle_deg in _feature_angles_deg(feature):
+            turned = affinity.rotate(shape, angle_deg, origin=(0, 0))
+            name = f"{feature.purpose} {feature.shape} at {x:g} mm, {angle_deg % 360:g} degrees"
+            if not any(shapely.equals_exact(turned, edge.line, SAME_CUT_MM) for edge in edges):
+                edges.append(_Edge(name=name, line=turned, at=Place(radius_mm=x, angle_deg=angle_deg % 360)))
+    return edges
+
+
+def _rim(movement: Movement) -> _Edge:
+    rim_mm = movement.disc.outer_diameter_mm / 2
+    disc: BaseGeometry = _circle(rim_mm)
+    for feature in movement.disc.features:
+        if feature.shape == "notch":
+            half_mm = feature.width_mm / 2, feature.length_mm / 2
+            box = shapely.box(feature.radius_mm - half_mm[0], -half_mm[1], feature.radius_mm + half_mm[0], half_mm[1])
+            for angle_deg in _feature_angles_deg(feature):
+                disc = disc.difference(affinity.rotate(box, angle_deg, origin=(0, 0)))
+    return _Edge(name="rim", line=disc.boundary, at=Place(radius_mm=rim_mm))
+
+
+def _compare(drawing: CutDrawing, layer: str, wanted: list[_Edge]) -> list[Finding]:
+    findings, lines = [], []
+    for contour in drawing.contours:
+        if contour.layer != layer:
+            continue
+        traced = contour.traced_mm() if len(contour.points_mm) else contour.points_mm
+        if contour.closed and len(traced) >= _FEWEST_CORNERS:
+            lines.append(shapely.LinearRing(traced))
+        else:
+            findings.append(_open_line(contour))
+    partner = _partners(wanted, lines)
+    for place, edge in enumerate(wanted):
+        found = [line for line, mate in zip(lines, partner, strict=True) if mate == place]
+        findings += _compare_edge(edge, found)
+    return findings
+
+
+def _partners(wanted: list[_Edge], lines: list[shapely.LinearRing]) -> NDArray[np.intp]:
+    """For each line found, the edge it resembles most by the box around it."""
+    wanted_boxes = shapely.bounds(np.array([edge.line for edge in wanted], dtype=np.object_))
+    found_boxes = shapely.bounds(np.array(lines, dtype=np.object_)).reshape(-1, 4)
+    return np.array([np.abs(wanted_boxes - box).max(axis=1).argmin() for box in found_boxes], dtype=np.intp)
+
+
+def _compare_edge(edge: _Edge, found: list[shapely.LinearRing]) -> list[Finding]:
+    if not found:
+        return [_differs(edge, f"the drawing has no {edge.name}", None)]
+    off_mm = [float(shapely.hausdorff_distance(edge.line, line)) for line in found]
+    nearest = int(np.argmin(off_mm))
+    findings = []
+    if off_mm[nearest] > BLANK_WITHIN_MM:
+        message = (
+            f"the {edge.name} lies up to {off_mm[nearest]:.3f} mm from where the movement has it; "
+            f"the limit is {BLANK_WITHIN_MM:g} mm"
+        )
+        findings.append(_differs(edge, message, off_mm[nearest]))
+    for place, line in enumerate(found):
+        if place != nearest:
+            again = float(shapely.hausdorff_distance(found[nearest], line)) <= SAME_CUT_MM
+            findings.append(_twice(edge) if again else _extra(line, edge))
+    return findings
+
+
+def _differs(edge: _Edge, message: str, measured_mm: float | None) -> Finding:
+    return Finding(
+        code=Code.BLANK_DIFFERS,
+        level=Level.ERROR,
+        message=message,
+        measured=measured_mm,
+        limit=BLANK_WITHIN_MM,
+        unit="mm",
+        at=edge.at,
+        remedy="choose the movement this was drawn for, or correct the drawing",
+    )
+
+
+def _twice(edge: _Edge) -> Finding:
+    return Finding(
+        code=Code.CUT_TWICE,
+        level=Level.ERROR,
+        message=f"the {edge.name} is drawn twice",
+        measured=None,
+        limit=SAME_CUT_MM,
+        unit="mm",
+        at=edge.at,
+        remedy="cut the second out of the drawing",
+    )
+
+
+def _extra(line: shapely.LinearRing, edge: _Edge) -> Finding:
+    x, y = (round((low + high) / 2, 3) + 0.0 for low, high in (line.bounds[::2], line.bounds[1::2]))
+    what = "a second rim" if edge.name == "rim" else "a hole the movement does not have"
+    return _unknown(f"the drawing has {what}, around ({x:.3f}, {y:.3f})", math.hypot(x, y), math.atan2(y, x))
+
+
+def _open_line(contour: Contour) -> Finding:
+    x, y = contour.points_mm.mean(axis=0).tolist() if len(contour.points_mm) else (0.0, 0.0)
+    message = f"layer {contour.layer} has a line that does not close, around ({x:.3f}, {y:.3f})"
+    return _unknown(message, math.hypot(x, y), math.atan2(y, x))
+
+
+def _unknown(message: str, radius_mm: float, angle_rad: float) -> Finding:
+    return Finding(
+        code=Code.UNKNOWN_CUT,
+        level=Level.ERROR,
+        message=message,
+        measured=None,
+        limit=None,
+        unit="",
+        at=Place(radius_mm=radius_mm, angle_deg=math.degrees(angle_rad) % 360),
+        remedy="cut it out of the drawing, or add it to the movement",
+    )

@@ -1,0 +1,17 @@
+"""What reading back accepts and how closely a cut must agree, in one table."""
+
+MOST_MIB = 10  # MiB; a disc of 3000 projections takes about 1, other programs' files some times that
+MOST_CUTS = 20_000  # contours and points; ten times the fullest disc of 67 tracks
+MOST_VERTICES = 20_000  # vertices of one contour; keeps a comparison of two outlines short
+FARTHEST_MM = 10_000.0  # mm; no disc is 20 m across, and what lies farther off was not drawn in mm
+
+REPEATED_WITHIN_MM = 1e-6  # mm; below what a file of six decimals can tell apart
+STRAIGHT_WITHIN_MM = 1e-5  # mm; a vertex this near a straight line was put in by a program, not by a person
+JOINED_WITHIN_MM = 1e-4  # mm; ends of lines and arcs of one contour, after rounding to four decimals
+TRACED_WITHIN_MM = 0.002  # mm; how far a traced arc may lie inside the true one: a tenth of what is compared
+
+SHAPE_WITHIN_MM = 0.02  # mm; below the position tolerance of any cutter, above any rounding of a file
+SQUARE_WITHIN_DEG = 0.2  # degrees; 0.007 mm over a projection 2 mm long
+TRACK_WITHIN_MM = 0.02  # mm; as for shapes
+BLANK_WITHIN_MM = 0.02  # mm; as for shapes
+SAME_CUT_MM = 0.01  # mm; two cuts nearer than this are one cut drawn twice

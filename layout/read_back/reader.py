@@ -1,0 +1,81 @@
+"""From the bytes of a drawing to the disc that would be cut."""
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.documents.cutter import Cutter
+from layout.documents.movement import Movement
+from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.mechanics.projection import pattern_of
+from layout.mechanics.turning import turning_of
+from layout.place.disc import Disc
+from layout.read_back.blank import compare_blank
+from layout.read_back.entities import CUT_LAYERS, CutDrawing
+from layout.read_back.file import read_drawing
+from layout.read_back.projections import Wanted, edges_of
+from layout.read_back.reading import Reading
+
+
+def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
+    """The disc that a drawing would give, from what is cut alone.
+
+    Only the cutter's layers for slits, slots, hits, holes and the rim are read; marks, fold lines
+    and openings after forming are not looked at. Accepted on them are polylines, circles, points
+    (hits), and lines and arcs that follow one another; vertices may start anywhere and run either
+    way. The absolute place of every working edge is recovered from the shape of its cut.
+
+    Args:
+        dxf: An ASCII DXF file in millimetres, its origin at the disc's centre.
+        movement: The movement the disc is for.
+        cutter: The cutter it was drawn for.
+
+    Returns:
+        The disc, without what is out of shape, off its track or drawn a second time, and a finding
+        for each of those and for what of the blank differs. A drawing without cuts gives a disc
+        without projections, and findings for the missing blank.
+
+    Raises:
+        DrawingReadError: The bytes are no such file.
+    """
+    drawing = read_drawing(dxf, cutter)
+    turning, pattern = turning_of(movement), pattern_of(movement, cutter)
+    edges, findings = edges_of(drawing, Wanted(cutter=cutter, turning=turning, pattern=pattern))
+    disc = Disc(
+        movement=movement,
+        cutter=cutter,
+        turning=turning,
+        pattern=pattern,
+        track_index=frozen_ints(edges.track_index),
+        edge_angle_rad=frozen_floats(edges.edge_angle_rad),
+    )
+    return Reading(disc=disc, findings=(*_of_the_file(drawing, cutter), *findings, *compare_blank(drawing, movement)))
+
+
+def _of_the_file(drawing: CutDrawing, cutter: Cutter) -> list[Finding]:
+    """What the file holds beside the cuts that can be read."""
+    findings = []
+    if drawing.mended:
+        message = "the file is damaged and was read as far as it goes; cuts may be missing"
+        findings.append(_unknown(Level.WARNING, message, "save the drawing anew from the program that made it"))
+    read = ", ".join(cutter.layer(ours).name for ours in CUT_LAYERS)
+    for name, count in drawing.other_layers.items():
+        message = f"layer {name} is none of this cutter's, and its entities ({count}) are not read; read are {read}"
+        findings.append(_unknown(Level.WARNING, message, "check that nothing on it is to be cut"))
+    for (ours, kind), count in drawing.strangers.items():
+        message = (
+            f"layer {cutter.layer(ours).name} has entities ({count}) of type {kind}, which cannot be read back; "
+            f"{'points are' if ours == 'HITS' else 'polylines, circles, lines and arcs are'}"
+        )
+        findings.append(_unknown(Level.ERROR, message, "convert or explode them in the program that made them"))
+    return findings
+
+
+def _unknown(level: Level, message: str, remedy: str) -> Finding:
+    return Finding(
+        code=Code.UNKNOWN_CUT,
+        level=level,
+        message=message,
+        measured=None,
+        limit=None,
+        unit="",
+        at=Place(),
+        remedy=remedy,
+    )
