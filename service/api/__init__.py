@@ -1,0 +1,1 @@
+"""The HTTP API: one blueprint per resource, problem details for everything that goes wrong."""

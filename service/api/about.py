@@ -1,0 +1,41 @@
+"""What the service is: whether it answers, what it limits, where things are."""
+
+from flask import Blueprint, Response, request
+
+from layout.version import ENGINE_VERSION
+from service.api.answers import document_response, json_response
+from service.limits import Limits
+
+ADDRESSES = {
+    "movements": "/v1/movements",
+    "cutters": "/v1/cutters",
+    "layouts": "/v1/layouts",
+    "limits": "/v1/limits",
+    "problems": "/problems",
+    "health": "/healthz",
+}
+
+
+def about_routes(limits: Limits) -> Blueprint:
+    """The routes that tell about the service itself."""
+    routes = Blueprint("about", __name__)
+
+    @routes.get("/")
+    def tell_addresses() -> Response:
+        return document_response(
+            {"service": "discwright", "engine_version": ENGINE_VERSION, "links": ADDRESSES}, request
+        )
+
+    @routes.get("/healthz")
+    def tell_health() -> Response:
+        return json_response({"status": "ok", "engine_version": ENGINE_VERSION})
+
+    @routes.get("/v1/limits")
+    def tell_limits() -> Response:
+        told = [
+            {"name": limit.name, "value": limit.value, "unit": limit.unit, "reason": limit.reason}
+            for limit in limits.told()
+        ]
+        return document_response({"limits": told}, request)
+
+    return routes

@@ -1,0 +1,201 @@
+"""Layouts kept for their links: a bounded folder that all workers of the service share.
+
+A layout is one file, a ZIP archive of its inputs and its files. It is written beside its name and then
+renamed, so that no worker ever sees half of one. A look at a layout renews the time of its file; where
+there are too many, the oldest go. The file's name holds a digest of the program, so that another version
+never gives out what an earlier one made.
+"""
+
+import hashlib
+import io
+import json
+import logging
+import os
+import stat
+import tempfile
+import time
+import zipfile
+from collections.abc import Mapping
+from dataclasses import dataclass
+from importlib.resources import files
+from importlib.resources.abc import Traversable
+from pathlib import Path
+
+from service.documents import Inputs, Shipped, Source, Written
+from service.settings import ServiceSettings, SettingsError
+
+log = logging.getLogger("discwright")
+
+SUFFIX = ".zip"
+PART_SUFFIX = ".part"
+OWNER_ONLY = 0o700
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class KeptLayout:
+    """A layout as it is kept.
+
+    Attributes:
+        fingerprint: Its id.
+        title: The tune's.
+        good_to_cut: Whether no error-level finding stands.
+        inputs: What it was made from.
+        files: Its files by name; without the cutting files where they are kept back.
+    """
+
+    fingerprint: str
+    title: str
+    good_to_cut: bool
+    inputs: Inputs
+    files: Mapping[str, bytes]
+
+
+class LayoutCache:
+    """The folder of kept layouts; any number of processes may use it at a time."""
+
+    def __init__(self, settings: ServiceSettings) -> None:
+        """Make the folder where it does not exist.
+
+        Raises:
+            SettingsError: The folder cannot be made or used.
+        """
+        self._folder = settings.cache_directory
+        self._most_layouts = settings.limits.cache_layouts
+        self._most_bytes = settings.limits.cache_bytes
+        self._abandoned_s = settings.limits.abandoned_part_s
+        self.program = program_digest()
+        _make_own_folder(self._folder)
+
+    def get(self, fingerprint: str) -> KeptLayout | None:
+        """The layout of a fingerprint, or None where none is kept.
+
+        Args:
+            fingerprint: Hex digits; checked by the caller, as it becomes a file name.
+        """
+        path = self._path(fingerprint)
+        try:
+            packed = path.read_bytes()
+            layout = _unpacked(packed)
+            os.utime(path)
+        except FileNotFoundError:
+            return None
+        except (zipfile.BadZipFile, KeyError, ValueError) as fault:
+            log.warning("%s is damaged and removed: %s", path, fault)
+            path.unlink(missing_ok=True)
+            return None
+        return layout
+
+    def put(self, layout: KeptLayout) -> None:
+        """Keep a layout, and let the least recently used go where there are too many.
+
+        The layout just kept stays, whatever its size.
+
+        Raises:
+            OSError: The disk is full, or the folder was taken away.
+        """
+        handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
+        try:
+            with os.fdopen(handle, "wb") as file:
+                file.write(_packed(layout))
+            os.replace(part, self._path(layout.fingerprint))
+        except BaseException:
+            Path(part).unlink(missing_ok=True)
+            raise
+        self._let_go(keep=self._path(layout.fingerprint))
+
+    def _path(self, fingerprint: str) -> Path:
+        return self._folder / f"{fingerprint}-{self.program}{SUFFIX}"
+
+    def _let_go(self, keep: Path) -> None:
+        seen = []
+        for path in self._folder.iterdir():
+            try:
+                known = path.stat()
+            except FileNotFoundError:
+                continue  # another worker let it go
+            if path.suffix == PART_SUFFIX and known.st_mtime < time.time() - self._abandoned_s:
+                path.unlink(missing_ok=True)
+            elif path.suffix == SUFFIX and path != keep:
+                seen.append((known.st_mtime_ns, path.name, known.st_size, path))
+        count, taken_bytes = 1, keep.stat().st_size if keep.exists() else 0
+        for _, _, size_bytes, path in sorted(seen, reverse=True):
+            count += 1
+            taken_bytes += size_bytes
+            if count > self._most_layouts or taken_bytes > self._most_bytes:
+                path.unlink(missing_ok=True)
+
+
+def program_digest() -> str:
+    """Eight hex digits that name the code and the documents of the computation as they are installed."""
+    digest = hashlib.sha256()
+    for name, content in sorted(_sources(files("layout"), "")):
+        digest.update(f"{name} {len(content)}\n".encode() + content)
+    return digest.hexdigest()[:8]
+
+
+def _sources(folder: Traversable, inside: str) -> list[tuple[str, bytes]]:
+    found = []
+    for entry in folder.iterdir():
+        if entry.is_dir():
+            found += _sources(entry, f"{inside}{entry.name}/")
+        elif entry.name.endswith((".py", ".json")):
+            found.append((inside + entry.name, entry.read_bytes()))
+    return found
+
+
+def _make_own_folder(folder: Path) -> None:
+    advice = "set DISCWRIGHT_CACHE to a folder of your own"
+    try:
+        folder.mkdir(mode=OWNER_ONLY, parents=True, exist_ok=True)
+        known = folder.lstat()
+    except OSError as refusal:
+        raise SettingsError(f"layouts cannot be kept in {folder} ({refusal.strerror}); {advice}") from refusal
+    # In a folder for all users, someone else may have made this one first.
+    others_write = known.st_mode & (stat.S_IWGRP | stat.S_IWOTH)
+    if not stat.S_ISDIR(known.st_mode) or known.st_uid != os.getuid() or others_write:
+        raise SettingsError(f"layouts cannot be kept in {folder}, which others own or may write to; {advice}")
+    if not os.access(folder, os.W_OK | os.X_OK):
+        raise SettingsError(f"layouts cannot be kept in {folder}, which cannot be written to; {advice}")
+
+
+def _packed(layout: KeptLayout) -> bytes:
+    inputs = layout.inputs
+    about = {
+        "fingerprint": layout.fingerprint,
+        "title": layout.title,
+        "good_to_cut": layout.good_to_cut,
+        "movement": inputs.movement.id if isinstance(inputs.movement, Shipped) else None,
+        "cutter": inputs.cutter.id if isinstance(inputs.cutter, Shipped) else None,
+    }
+    members = {"about.json": json.dumps(about).encode(), "tune.mid": inputs.tune, "settings.json": inputs.settings}
+    for name, source in (("movement.json", inputs.movement), ("cutter.json", inputs.cutter)):
+        if isinstance(source, Written):
+            members[name] = source.text
+    members |= {f"files/{name}": content for name, content in layout.files.items()}
+    buffer = io.BytesIO()
+    with zipfile.ZipFile(buffer, "w", zipfile.ZIP_DEFLATED) as archive:
+        for name, content in members.items():
+            archive.writestr(name, content)
+    return buffer.getvalue()
+
+
+def _unpacked(packed: bytes) -> KeptLayout:
+    with zipfile.ZipFile(io.BytesIO(packed)) as archive:
+        members = {name: archive.read(name) for name in archive.namelist()}
+    about = json.loads(members["about.json"])
+
+    def source(name: str) -> Source:
+        return Written(text=members[f"{name}.json"]) if about[name] is None else Shipped(id=about[name])
+
+    return KeptLayout(
+        fingerprint=about["fingerprint"],
+        title=about["title"],
+        good_to_cut=about["good_to_cut"],
+        inputs=Inputs(
+            tune=members["tune.mid"],
+            movement=source("movement"),
+            cutter=source("cutter"),
+            settings=members["settings.json"],
+        ),
+        files={name.removeprefix("files/"): content for name, content in members.items() if name.startswith("files/")},
+    )

@@ -1,0 +1,62 @@
+"""The parts of a multipart/form-data body (RFC 7578), as the bytes they were sent as.
+
+The form parser of the web library turns parts without a file name into text, which a MIDI file does not
+survive; so its decoder is driven here, and a part counts the same with a file name or without.
+"""
+
+from collections.abc import Iterator
+
+from werkzeug.exceptions import RequestEntityTooLarge
+from werkzeug.sansio.multipart import Data, Epilogue, Event, Field, File, MultipartDecoder, NeedData
+
+from service.api.problems import ProblemError
+
+
+def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_parts: int) -> dict[str, bytes]:
+    """The parts by name.
+
+    Args:
+        body: The request's whole body.
+        boundary: Of the header Content-Type; None where it states none.
+        known: Names that parts may have.
+        most_parts: How many parts the body may have.
+
+    Raises:
+        ProblemError: The body cannot be taken apart, has too many parts, or a part is unknown or comes twice.
+    """
+    if not boundary:
+        raise _unreadable("the header Content-Type states no boundary")
+    decoder = MultipartDecoder(boundary.encode("latin-1", "replace"), max_parts=most_parts)
+    parts: dict[str, bytearray] = {}
+    name = ""
+    for event in _events(decoder, body):
+        if isinstance(event, Field | File):
+            name = event.name
+            if name not in known:
+                raise _invalid(name, f"there is no part called {name!r}; the parts are {', '.join(known)}")
+            if name in parts:
+                raise _invalid(name, f"the part {name} comes twice; send it once")
+            parts[name] = bytearray()
+        elif isinstance(event, Data):
+            parts[name] += event.data
+    return {name: bytes(content) for name, content in parts.items()}
+
+
+def _events(decoder: MultipartDecoder, body: bytes) -> Iterator[Event]:
+    try:
+        for chunk in (body, None):  # None: nothing follows
+            decoder.receive_data(chunk)
+            while not isinstance(event := decoder.next_event(), Epilogue | NeedData):
+                yield event
+    except RequestEntityTooLarge as refusal:
+        raise _unreadable("it has too many parts") from refusal
+    except (ValueError, KeyError) as fault:
+        raise _unreadable("it does not end with its boundary, or a part lacks its name") from fault
+
+
+def _invalid(name: str, detail: str) -> ProblemError:
+    return ProblemError(name="parameter-invalid", detail=detail, more={"parameter": name})
+
+
+def _unreadable(why: str) -> ProblemError:
+    return ProblemError(name="multipart-unreadable", detail=f"the multipart body cannot be taken apart: {why}")

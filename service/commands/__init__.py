@@ -1,0 +1,1 @@
+"""The command `discwright`: one module per subcommand."""

@@ -1,0 +1,194 @@
+import os
+import re
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+
+from service.api.layout_cache import KeptLayout, LayoutCache
+from service.documents import Inputs, Shipped, Source, Written
+from service.limits import Limits
+from service.settings import ServiceSettings, SettingsError
+
+FAR_PAST_NS = 1_000_000_000  # one second after the epoch: older than anything written now
+
+
+def settings(folder: Path, limits: Limits | None = None) -> ServiceSettings:
+    return ServiceSettings(cache_directory=folder / "layouts", limits=limits or Limits())
+
+
+def layout(number: int, *, size_bytes: int = 10, movement: Source | None = None) -> KeptLayout:
+    """A layout whose file cannot be packed smaller than its size."""
+    inputs = Inputs(
+        tune=b"MThd\xff", movement=movement or Shipped(id="tarnlight-17"), cutter=Shipped(id="x"), settings=b"{}"
+    )
+    return KeptLayout(
+        fingerprint=f"{number:016x}",
+        title="Dünung",
+        good_to_cut=True,
+        inputs=inputs,
+        files={"disc.dxf": os.urandom(size_bytes)},
+    )
+
+
+def kept_numbers(cache: LayoutCache, most: int = 20) -> list[int]:
+    """Which of the layouts 0 … most are kept, without renewing any."""
+    names = [path.name for path in cache._folder.iterdir()]
+    return [number for number in range(most) if any(name.startswith(f"{number:016x}") for name in names)]
+
+
+def put_in_order(cache: LayoutCache, *layouts: KeptLayout) -> None:
+    """Keep layouts so that each is older than the next by a second, whatever the clock's grain."""
+    for place, each in enumerate(layouts):
+        cache.put(each)
+        moment_ns = FAR_PAST_NS * (place + 1)
+        if cache._path(each.fingerprint).exists():
+            os.utime(cache._path(each.fingerprint), ns=(moment_ns, moment_ns))
+
+
+@pytest.mark.parametrize("movement", [Shipped(id="tarnlight-17"), Written(text=b"\xff not even JSON")])
+def test_what_is_kept_comes_back_as_it_was(tmp_path: Path, movement: Source) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    kept = layout(1, movement=movement)
+
+    cache.put(kept)
+
+    assert cache.get(kept.fingerprint) == kept
+
+
+def test_what_was_never_kept_is_not_there(tmp_path: Path) -> None:
+    assert LayoutCache(settings(tmp_path)).get("0" * 16) is None
+
+
+def test_the_least_recently_used_layout_goes_where_there_are_too_many(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path, Limits(cache_layouts=3)))
+    put_in_order(cache, layout(0), layout(1), layout(2))
+    cache.get(layout(0).fingerprint)  # a look renews it
+
+    cache.put(layout(3))
+
+    assert kept_numbers(cache) == [0, 2, 3]
+
+
+def test_the_least_recently_used_layouts_go_where_they_take_too_much_room(tmp_path: Path) -> None:
+    # Each takes 10,000 bytes and under 1,000 of archive: two fit into 25,000, three do not.
+    cache = LayoutCache(settings(tmp_path, Limits(cache_bytes=25_000)))
+    put_in_order(cache, layout(0, size_bytes=10_000), layout(1, size_bytes=10_000))
+
+    cache.put(layout(2, size_bytes=10_000))
+
+    assert kept_numbers(cache) == [1, 2]
+
+
+def test_the_layout_just_kept_stays_whatever_its_size(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path, Limits(cache_bytes=25_000)))
+    put_in_order(cache, layout(0), layout(1, size_bytes=30_000))
+
+    assert kept_numbers(cache) == [1]
+
+
+def test_a_damaged_file_is_removed_and_counts_as_not_kept(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    cache.put(layout(1))
+    path = cache._path(layout(1).fingerprint)
+    path.write_bytes(path.read_bytes()[:-30])
+
+    assert cache.get(layout(1).fingerprint) is None
+    assert not path.exists()
+
+
+def test_a_file_half_written_by_a_stopped_worker_goes_after_a_while(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    old, fresh = tmp_path / "layouts" / "a.part", tmp_path / "layouts" / "b.part"
+    for part in (old, fresh):
+        part.write_bytes(b"half")
+    os.utime(old, (time.time() - 3700, time.time() - 3700))  # the limit is 3,600 s
+
+    cache.put(layout(1))
+
+    assert (old.exists(), fresh.exists()) == (False, True)
+
+
+def test_a_failed_write_leaves_nothing_behind(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def full_disk(*_: object) -> None:
+        raise OSError(28, "No space left on device")
+
+    cache = LayoutCache(settings(tmp_path))
+    monkeypatch.setattr(os, "replace", full_disk)
+
+    with pytest.raises(OSError, match="No space left"):
+        cache.put(layout(1))
+    assert list((tmp_path / "layouts").iterdir()) == []
+
+
+def test_another_program_s_layouts_are_not_given_out(tmp_path: Path) -> None:
+    cache, other = LayoutCache(settings(tmp_path)), LayoutCache(settings(tmp_path))
+    other.program = "0ther000"
+    other.put(layout(1))
+
+    assert cache.get(layout(1).fingerprint) is None
+    assert re.fullmatch("[0-9a-f]{8}", cache.program)
+
+
+WORKER = """
+import os, sys
+from pathlib import Path
+from service.api.layout_cache import KeptLayout, LayoutCache
+from service.documents import Inputs, Shipped
+from service.limits import Limits
+from service.settings import ServiceSettings
+
+folder, first = Path(sys.argv[1]), int(sys.argv[2])
+cache = LayoutCache(ServiceSettings(cache_directory=folder, limits=Limits(cache_layouts=5)))
+inputs = Inputs(tune=b"MThd", movement=Shipped(id="x"), cutter=Shipped(id="x"), settings=b"{}")
+for turn in range(150):
+    fingerprint = f"{(first + turn) % 8:016x}"
+    files = {"disc.dxf": os.urandom(50_000)}
+    cache.put(KeptLayout(fingerprint=fingerprint, title="t", good_to_cut=True, inputs=inputs, files=files))
+    seen = cache.get(f"{(first + 2 * turn) % 8:016x}")
+    assert seen is None or len(seen.files["disc.dxf"]) == 50_000
+"""
+
+
+def test_two_workers_at_once_never_see_half_a_layout(tmp_path: Path) -> None:
+    folder = tmp_path / "layouts"
+    commands = [[sys.executable, "-c", WORKER, str(folder), first] for first in ("0", "3")]
+
+    workers = [subprocess.Popen(command, stderr=subprocess.PIPE, text=True) for command in commands]
+    said = [worker.communicate(timeout=60)[1] for worker in workers]
+
+    # A damaged file would be told on stderr as it is removed.
+    assert said == ["", ""]
+    assert [worker.returncode for worker in workers] == [0, 0]
+    assert len(list(folder.iterdir())) <= 6  # five, and one that the other worker just kept
+
+
+def test_the_folder_is_its_owner_s_alone(tmp_path: Path) -> None:
+    LayoutCache(settings(tmp_path))
+
+    assert (tmp_path / "layouts").stat().st_mode & 0o777 == 0o700
+
+
+def test_a_folder_that_others_may_write_to_is_refused(tmp_path: Path) -> None:
+    (tmp_path / "layouts").mkdir()
+    (tmp_path / "layouts").chmod(0o777)
+
+    with pytest.raises(SettingsError, match="layouts, which others own or may write to; set DISCWRIGHT_CACHE"):
+        LayoutCache(settings(tmp_path))
+
+
+def test_a_link_in_place_of_the_folder_is_refused(tmp_path: Path) -> None:
+    (tmp_path / "elsewhere").mkdir()
+    (tmp_path / "layouts").symlink_to(tmp_path / "elsewhere")
+
+    with pytest.raises(SettingsError, match="others own or may write to"):
+        LayoutCache(settings(tmp_path))
+
+
+def test_a_file_in_place_of_the_folder_is_refused(tmp_path: Path) -> None:
+    (tmp_path / "layouts").write_text("")
+
+    with pytest.raises(SettingsError, match=r"cannot be kept in .* \(File exists\)"):
+        LayoutCache(settings(tmp_path))

@@ -1,0 +1,159 @@
+"""A planner that computes nothing, and a client that speaks to the service as its users do."""
+
+import json
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from flask.testing import FlaskClient
+from werkzeug.test import TestResponse
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.errors import MidiReadError
+from service.app import create_app
+from service.limits import Limits
+from service.settings import ServiceSettings
+
+TUNE = b"MThd a tune"
+BROKEN_TUNE = b"not a tune"
+THIN_WEB = Finding(
+    code=Code.WEB_TOO_THIN,
+    level=Level.ERROR,
+    message="the web between track 3 and track 4 is 0.31 mm, below 0.5 mm",
+    measured=0.31,
+    limit=0.5,
+    unit="mm",
+    at=Place(tracks=(3, 4), angle_deg=12.5),
+    remedy="leave out note 7",
+)
+NEAR_RIM = Finding(
+    code=Code.WEB_TO_RIM,
+    level=Level.WARNING,
+    message="the web to the rim is 0.52 mm, near 0.5 mm",
+    measured=0.52,
+    limit=0.5,
+    unit="mm",
+    at=Place(radius_mm=110.0),
+    remedy="cut a trial piece",
+)
+
+
+@dataclass
+class FakeLayout:
+    """What the fake planner lays out."""
+
+    title: str
+    fingerprint: str
+    record: dict[str, Any]
+    good_to_cut: bool
+    score: None = None
+
+
+@dataclass
+class FakeReading:
+    """A drawing that the fake planner has checked."""
+
+    disc: Any
+    plucks: Any
+    findings: tuple[Finding, ...]
+    good_to_cut: bool
+
+
+@dataclass
+class FakeDisc:
+    """Three projections: two on track 1, one on track 2."""
+
+    cutter: Any
+    track_index: Any = field(default_factory=lambda: np.array([1, 0, 0]))
+    radius_mm: Any = field(default_factory=lambda: np.array([40.0, 36.0, 36.0]))
+    edge_angle_rad: Any = field(default_factory=lambda: np.array([0.1, 0.2, np.pi]))
+
+
+@dataclass
+class FakePlucks:
+    """When the projections of FakeDisc sound."""
+
+    track_index: Any = field(default_factory=lambda: np.array([1, 0, 0]))
+    sounds_s: Any = field(default_factory=lambda: np.array([2.5, 0.25, 7.0]))
+
+
+@dataclass
+class FakePlanner:
+    """Lays out anything that begins as a MIDI file does; remembers how often it was asked to."""
+
+    findings: tuple[Finding, ...] = ()
+    title: str = "Harvest Dance"
+    laid_out_count: int = 0
+
+    def fingerprint_of(self, tune: bytes, movement: Any, cutter: Any, settings: Any) -> str:
+        seen = repr((tune, movement.id, cutter.id, settings))
+        return f"{sum((place + 1) * ord(letter) for place, letter in enumerate(seen)):016x}"
+
+    def lay_out(self, tune: bytes, movement: Any, cutter: Any, settings: Any) -> FakeLayout:
+        self.laid_out_count += 1
+        if not tune.startswith(b"MThd"):
+            raise MidiReadError(byte_offset=0, found="'not '", expected="the header chunk", remedy="export it again")
+        good = all(finding.level is not Level.ERROR for finding in self.findings)
+        record = {
+            "movement": {"id": movement.id, "revision": movement.revision},
+            "cutter": {"id": cutter.id},
+            "drawn_from": cutter.drawn_from,
+            "read": {"warnings": ["track 2 has no end"]},
+            "transposed_semitones": 3,
+            "speed_factor": 1.0,
+            "from_s": 0.5,
+            "projections": [{"notes": [0, 2]}, {"notes": [3]}],
+            "left_out": [{"note": 1, "reason": "no-such-pitch"}],
+            "findings": [
+                {"code": f.code, "level": f.level, "message": f.message, "remedy": f.remedy} for f in self.findings
+            ],
+        }
+        return FakeLayout(
+            settings.title or self.title, self.fingerprint_of(tune, movement, cutter, settings), record, good
+        )
+
+    def files_of(self, laid_out: FakeLayout, *, not_good: str | None = None) -> dict[str, bytes]:
+        mark = "" if laid_out.good_to_cut or not_good is None else f" NOT GOOD TO CUT: {not_good}"
+        names = ["disc.dxf", "record.dxf", "disc.svg", "hits.csv"]
+        if not laid_out.good_to_cut and not_good is None:
+            names = ["record.dxf", "disc.svg"]
+        files = {name: f"{name} of {laid_out.title}{mark}".encode() for name in names}
+        return {**files, "layout.json": json.dumps(laid_out.record).encode()}
+
+    def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> FakeReading:
+        good = all(finding.level is not Level.ERROR for finding in self.findings)
+        return FakeReading(FakeDisc(cutter), FakePlucks(), self.findings, good)
+
+
+class Client:
+    """The service, as its users speak to it."""
+
+    def __init__(self, http: FlaskClient) -> None:
+        self.http = http
+
+    def get(self, path: str, **headers: str) -> TestResponse:
+        return self.http.get(path, headers=_spelt(headers))
+
+    def post_tune(
+        self,
+        tune: bytes = TUNE,
+        query: str = "movement=fernhollow-31",
+        media_type: str | None = "audio/midi",
+        **headers: str,
+    ) -> TestResponse:
+        return self.http.post(f"/v1/layouts?{query}", data=tune, content_type=media_type, headers=_spelt(headers))
+
+    def post_parts(self, parts: Mapping[str, Any], query: str = "movement=fernhollow-31") -> TestResponse:
+        return self.http.post(f"/v1/layouts?{query}", data=dict(parts), content_type="multipart/form-data")
+
+
+def _spelt(headers: dict[str, str]) -> dict[str, str]:
+    return {name.replace("_", "-"): value for name, value in headers.items()}
+
+
+def client_of(planner: Any, folder: Path, limits: Limits | None = None) -> Client:
+    """A client of a service of its own, its layouts kept in a folder."""
+    settings = ServiceSettings(cache_directory=folder / "layouts", limits=limits or Limits())
+    return Client(create_app(settings, planner=planner).test_client())
