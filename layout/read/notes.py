@@ -78,10 +78,10 @@ class NoteCollector:
             self._loose_offs[key].append(tick)
 
     def _end_backward_note(self, key: int) -> None:
-        """End the one note of a key that sounds, if it was written backwards (rule 2)."""
+        """End the oldest sounding note of a key, if it was written backwards (rule 2)."""
         sounding, loose_offs = self._sounding[key], self._loose_offs[key]
-        onset_tick = self.onset_tick[sounding[0]]
-        if len(sounding) == 1 and loose_offs and loose_offs[-1] == onset_tick:
+        # A note-off is loose only where nothing sounded, so the oldest note alone can have begun on it.
+        if loose_offs and loose_offs[-1] == self.onset_tick[sounding[0]]:
             self.end_tick[sounding.popleft()] = loose_offs.pop()
 
     def end_track(self) -> None:

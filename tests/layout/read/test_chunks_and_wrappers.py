@@ -141,6 +141,14 @@ def test_fewer_tracks_than_the_header_counts_is_a_warning(count: int, sentence: 
     assert score.warnings == (sentence,)
 
 
+def test_an_unknown_chunk_where_a_track_is_missing_is_skipped_like_any_other() -> None:
+    tune = midi_file(NOTE_TRACK, midi_format=1, count=2) + chunk(b"XFIH", b"abcd")
+
+    score = read_score(tune)
+
+    assert score.warnings == ("The header counts 1 track more than the file holds: notes may be missing.",)
+
+
 def test_a_track_without_an_end_of_track_event_keeps_its_notes_and_warns() -> None:
     tune = midi_file("""
         00 90 3C 40  # note on 60
@@ -219,6 +227,15 @@ def test_a_riff_wrapper_is_opened() -> None:
 
     assert score.pitch.tolist() == [60]
     assert score.warnings == ()
+
+
+def test_a_chunk_before_the_data_is_skipped_whatever_it_holds() -> None:
+    text = chunk(b"note", b"RIFF", byteorder="little")
+    tune = riff(text, chunk(b"data", midi_file(NOTE_TRACK), byteorder="little"))
+
+    score = read_score(tune)
+
+    assert score.pitch.tolist() == [60]
 
 
 def test_bytes_after_the_riff_wrapper_are_ignored_with_a_warning() -> None:

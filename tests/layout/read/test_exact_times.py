@@ -70,6 +70,20 @@ def test_tempi_of_all_tracks_are_merged_and_the_later_track_holds_at_one_tick() 
     assert score.onset_s.tolist() == [1.25, 1.25]
 
 
+def test_tempi_are_merged_by_tick_whatever_track_they_stand_in() -> None:
+    tune = midi_file(
+        f"8140 FF 51 03 03D090 {END}  # tick 192: 250000 us",
+        f"60 FF 51 03 0F4240 {END}    # tick 96: 1000000 us",
+        f"8220 {NOTE} {END}           # tick 288",
+        midi_format=1,
+    )
+
+    score = read_score(tune)
+
+    # 0.5 s + 1.0 s + 0.25 s for 96 ticks each
+    assert score.onset_s.tolist() == [1.75]
+
+
 def test_a_note_over_a_tempo_change_lasts_as_long_as_both_parts() -> None:
     tune = midi_file(f"""
         00 90 3C 40         # note on 60

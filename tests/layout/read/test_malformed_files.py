@@ -91,6 +91,7 @@ MALFORMED = [
         'a chunk "XFIH" of 2147483647 bytes, expected at most the 1 bytes that are left',
         18,
     ),
+    Malformed("track of a byte too many", GOOD[:-1], 'a chunk "MTrk" of 12 bytes, expected at most the 11 bytes', 18),
     Malformed(
         "no chunk between the tracks",
         midi_file(END, midi_format=1, count=2) + from_hexdump("00 FF 2F 00 4D 54 72 6B  # track length too short"),
@@ -214,6 +215,12 @@ MALFORMED = [
         "system exclusive past the end",
         midi_file(f"00 F0 20 7E 7F {END}"),
         "found an event of 32 bytes, expected at most the 6 bytes left in the track",
+        24,
+    ),
+    Malformed(
+        "system exclusive of a byte too many",
+        midi_file("00 F0 03 7E F7"),
+        "found an event of 3 bytes, expected at most the 2 bytes left in the track",
         24,
     ),
     Malformed(

@@ -23,9 +23,21 @@ def name_event(name: bytes) -> bytes:
         (b"  spaces round it  ", "spaces round it"),
         (b"x" * 100, "x" * 80),
         ("ü".encode() * 60, "ü" * 60),
+        (b"x" * 79 + b" y", "x" * 79),
         (b"", ""),
     ],
-    ids=["plain", "utf-8", "latin-1", "controls", "format marks", "spaces", "long", "characters, not bytes", "empty"],
+    ids=[
+        "plain",
+        "utf-8",
+        "latin-1",
+        "controls",
+        "format marks",
+        "spaces",
+        "long",
+        "characters, not bytes",
+        "cut at a space",
+        "empty",
+    ],
 )
 def test_the_title_is_the_track_name_made_printable(name: bytes, title: str) -> None:
     tune = midi_file(name_event(name) + END)

@@ -334,3 +334,43 @@ def test_a_note_off_written_before_every_note_on_to_be_safe_changes_nothing() ->
 
     assert spans_of(score) == [(60, 0.0, 0.5), (60, 1.0, 0.5)]
     assert score.warnings == ()
+
+
+def test_a_note_never_ended_lasts_to_the_end_of_the_longest_track_wherever_it_stands() -> None:
+    tune = midi_file("60 FF 2F 00", "00 90 3C 40 00 FF 2F 00", midi_format=1)
+
+    score = read_score(tune)
+
+    assert spans_of(score) == [(60, 0.0, 0.5)]
+
+
+def test_a_loose_note_off_of_an_earlier_tick_does_not_shorten_overlapping_notes() -> None:
+    tune = midi_file("""
+        00 80 3C 40  # tick 0: note off 60, nothing sounding
+        18 90 3C 40  # tick 24: note on
+        18 90 3C 40  # tick 48: again, while it sounds
+        18 80 3C 40  # tick 72: ends the first
+        18 80 3C 40  # tick 96: ends the second
+        00 FF 2F 00  # end of track
+    """)
+
+    score = read_score(tune)
+
+    # tick 24 = 0.125 s to tick 72 = 0.375 s; tick 48 = 0.25 s to tick 96 = 0.5 s
+    assert spans_of(score) == [(60, 0.125, 0.25), (60, 0.25, 0.25)]
+
+
+def test_one_note_off_written_backwards_gives_one_note_of_no_length() -> None:
+    tune = midi_file("""
+        00 80 3C 40  # tick 0: a note-off, nothing sounding
+        00 90 3C 41  # the note it belongs to
+        00 90 3C 42  # a second note in the same tick
+        30 90 3C 43  # tick 48: a third, while the second sounds
+        30 80 3C 40  # tick 96: ends the second
+        60 80 3C 40  # tick 192: ends the third
+        00 FF 2F 00  # end of track
+    """)
+
+    score = read_score(tune)
+
+    assert spans_of(score) == [(60, 0.0, 0.0), (60, 0.0, 0.5), (60, 0.25, 0.75)]
