@@ -10,8 +10,8 @@ from dataclasses import dataclass
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.movement import Movement
 
-GRAIN_MM = 1e-9  # mm; rounding of doubles at disc size, far below anything a cutter can do
-GRAIN_RAD = 1e-12  # rad; the same as an angle: GRAIN_MM at a radius of 1 m
+GRAIN_MM = 1e-6  # mm; a nanometre: what writing a place into a drawing and reading it back may leave
+GRAIN_RAD = 1e-7  # rad; the same as an angle: GRAIN_MM at the smallest radius a track has, 10 mm
 MOST_FINDINGS = 200  # findings of one check; a disc with more is wrong as a whole, and is told so
 
 
