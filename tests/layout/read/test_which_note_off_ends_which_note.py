@@ -100,7 +100,7 @@ def test_a_note_off_of_another_pitch_ends_nothing() -> None:
 def test_a_note_that_is_never_ended_lasts_to_the_end_of_the_sequence_and_is_warned_about() -> None:
     tune = midi_file(
         """
-        00 90 3C 40  # byte 22: note on 60, never ended; this track ends at once
+        00 90 3C 40  # byte 23: note on 60, never ended; this track ends at once
         00 FF 2F 00  # end of track
         """,
         """
