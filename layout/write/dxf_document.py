@@ -20,7 +20,7 @@ from layout.write.plain_text import dxf_text
 
 _COMMENT = "999\n{}\n"  # DXF reference: group code 999 is a comment, may stand before the sections
 _COMMENT_WIDTH = 200  # characters; a DXF line of R2010 holds 2049 bytes, seven for one character at most
-_NO_MOMENT = juliandate(datetime(2000, 1, 1))  # any fixed day; a drawing is older than none of its inputs
+_NO_MOMENT = juliandate(datetime(2000, 1, 1))  # any fixed day would do
 _MOMENTS = ("$TDCREATE", "$TDUCREATE", "$TDUPDATE", "$TDUUPDATE")
 _IDENTIFIERS = ("$FINGERPRINTGUID", "$VERSIONGUID")
 _DECIMAL_LENGTHS, _DECIMAL_DEGREES = 2, 0  # $LUNITS, $AUNITS
