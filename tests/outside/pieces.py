@@ -42,17 +42,17 @@ PIECE_NAMES = tuple(piece.name for piece in _PIECES)
 
 
 @cache
-def public_domain_pieces() -> dict[str, bytes]:
-    """Fourteen pieces of 20 s to 130 s by name, as format 1 MIDI files written by music21.
+def public_domain_piece(name: str) -> bytes:
+    """One of fourteen pieces of 20 s to 130 s by its name, as a format 1 MIDI file written by music21.
 
     The compositions are in the public domain: every composer died before 1925, or the tune is
     traditional and was printed before 1900 (who and when stands beside each in this module). The
     encodings are those the installed library ships; none is kept here.
 
-    The bytes are the same on every call and in every process. About ten seconds, once a process;
-    do not change the dictionary.
+    The bytes are the same on every call and in every process. About a second, once a process.
     """
-    return {piece.name: _midi_bytes(piece.work) for piece in _PIECES}
+    [work] = [piece.work for piece in _PIECES if piece.name == name]
+    return _midi_bytes(work)
 
 
 def _midi_bytes(work: str) -> bytes:

@@ -25,7 +25,7 @@ from layout.documents import read_settings, shipped_cutter, shipped_movement
 from layout.write.laid_out import LaidOut
 from service.demo.compose import demo_tune
 from tests.outside.gdal_drawing import area_of, layers_of, plucks_from_cut_geometry
-from tests.outside.pieces import PIECE_NAMES, public_domain_pieces
+from tests.outside.pieces import PIECE_NAMES, public_domain_piece
 
 MOVEMENTS = ("fernhollow-31", "mossbrook-67", "tarnlight-17")
 CUTTERS = ("fibre-laser", "turn-press")
@@ -35,7 +35,7 @@ GDAL_ARC_MM = 0.002  # mm; how far inside a round end GDAL's chords may lie: 0.6
 
 
 def piece(name: str) -> bytes:
-    return demo_tune() if name == "demo" else public_domain_pieces()[name]
+    return demo_tune() if name == "demo" else public_domain_piece(name)
 
 
 @cache

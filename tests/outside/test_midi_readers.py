@@ -16,7 +16,7 @@ import pytest
 import symusic
 
 from layout.read import Score, read_score
-from tests.outside.pieces import PIECE_NAMES, public_domain_pieces
+from tests.outside.pieces import PIECE_NAMES, public_domain_piece
 
 TOLERANCE_S = 0.5e-3
 
@@ -143,7 +143,7 @@ def generated_piece(seed: int, *, tempo_tracks: int) -> bytes:
 def piece_called(name: str) -> bytes:
     """A real piece, or a generated one where the name is "generated" and a seed."""
     kind, _, seed = name.partition(" ")
-    return generated_piece(int(seed), tempo_tracks=1) if kind == "generated" else public_domain_pieces()[name]
+    return generated_piece(int(seed), tempo_tracks=1) if kind == "generated" else public_domain_piece(name)
 
 
 NAMES = (*PIECE_NAMES, *(f"generated {seed}" for seed in range(4)))
