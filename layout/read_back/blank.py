@@ -5,15 +5,15 @@ from dataclasses import dataclass
 
 import numpy as np
 import shapely
-from numpy.typing import NDArray
 from shapely import affinity
 from shapely.geometry.base import BaseGeometry
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.movement import Feature, Movement
-from layout.read_back.contour import Contour, steps_of_arc
+from layout.errors import DrawingReadError
+from layout.read_back.contour import Contour, steps_of_arcs
 from layout.read_back.entities import CutDrawing
-from layout.read_back.limits import BLANK_WITHIN_MM, SAME_CUT_MM
+from layout.read_back.limits import BLANK_WITHIN_MM, MOST_TRACED, SAME_CUT_MM
 
 _FEWEST_CORNERS = 3
 
@@ -33,7 +33,11 @@ def compare_blank(drawing: CutDrawing, movement: Movement) -> list[Finding]:
 
 
 def _circle(radius_mm: float) -> BaseGeometry:
-    return shapely.Point(0, 0).buffer(radius_mm, quad_segs=steps_of_arc(radius_mm, math.pi / 2))
+    return shapely.Point(0, 0).buffer(radius_mm, quad_segs=_quarter_steps(radius_mm))
+
+
+def _quarter_steps(radius_mm: float) -> int:
+    return int(steps_of_arcs(np.array([radius_mm]), np.array([math.pi / 2]))[0])
 
 
 def _feature_angles_deg(feature: Feature) -> list[float]:
@@ -51,7 +55,7 @@ def _holes(movement: Movement) -> list[_Edge]:
         across_mm, along_mm = feature.width_mm / 2 - end_mm, feature.length_mm / 2 - end_mm
         x = feature.radius_mm
         middle = shapely.LineString([(x - across_mm, -along_mm), (x + across_mm, along_mm)])
-        shape = middle.buffer(end_mm, quad_segs=steps_of_arc(end_mm, math.pi / 2)).boundary
+        shape = middle.buffer(end_mm, quad_segs=_quarter_steps(end_mm)).boundary
         for angle_deg in _feature_angles_deg(feature):
             turned = affinity.rotate(shape, angle_deg, origin=(0, 0))
             name = f"{feature.purpose} {feature.shape} at {x:g} mm, {angle_deg % 360:g} degrees"
@@ -73,45 +77,50 @@ def _rim(movement: Movement) -> _Edge:
 
 
 def _compare(drawing: CutDrawing, layer: str, wanted: list[_Edge]) -> list[Finding]:
+    contours = [contour for contour in drawing.contours if contour.layer == layer]
+    _refuse_too_fine(contours, layer)
     findings, lines = [], []
-    for contour in drawing.contours:
-        if contour.layer != layer:
-            continue
+    for contour in contours:
         traced = contour.traced_mm() if len(contour.points_mm) else contour.points_mm
         if contour.closed and len(traced) >= _FEWEST_CORNERS:
             lines.append(shapely.LinearRing(traced))
         else:
             findings.append(_open_line(contour))
-    partner = _partners(wanted, lines)
+    # Boxes as shape (n, 4): quick to tell which line is which, however many there are.
+    wanted_boxes = shapely.bounds(np.array([edge.line for edge in wanted], dtype=np.object_))
+    boxes = shapely.bounds(np.array(lines, dtype=np.object_)).reshape(-1, 4)
+    partner = np.array([np.abs(wanted_boxes - box).max(axis=1).argmin() for box in boxes], dtype=np.intp)
     for place, edge in enumerate(wanted):
-        found = [line for line, mate in zip(lines, partner, strict=True) if mate == place]
-        findings += _compare_edge(edge, found)
+        mine = np.flatnonzero(partner == place)
+        off = np.abs(boxes[mine] - wanted_boxes[place]).max(axis=1)
+        findings += _compare_edge(edge, [lines[index] for index in mine[off.argsort(kind="stable")]])
     return findings
 
 
-def _partners(wanted: list[_Edge], lines: list[shapely.LinearRing]) -> NDArray[np.intp]:
-    """For each line found, the edge it resembles most by the box around it."""
-    wanted_boxes = shapely.bounds(np.array([edge.line for edge in wanted], dtype=np.object_))
-    found_boxes = shapely.bounds(np.array(lines, dtype=np.object_)).reshape(-1, 4)
-    return np.array([np.abs(wanted_boxes - box).max(axis=1).argmin() for box in found_boxes], dtype=np.intp)
+def _refuse_too_fine(contours: list[Contour], layer: str) -> None:
+    points = sum(int(contour.trace_steps().sum()) for contour in contours if len(contour.points_mm))
+    if points > MOST_TRACED:
+        raise DrawingReadError(
+            f"drawing: layer {layer} takes {points} points to compare, allowed are {MOST_TRACED}; "
+            "is this the drawing of one disc?"
+        )
 
 
 def _compare_edge(edge: _Edge, found: list[shapely.LinearRing]) -> list[Finding]:
+    """What is wrong with the lines found for an edge, the most like it first."""
     if not found:
         return [_differs(edge, f"the drawing has no {edge.name}", None)]
-    off_mm = [float(shapely.hausdorff_distance(edge.line, line)) for line in found]
-    nearest = int(np.argmin(off_mm))
     findings = []
-    if off_mm[nearest] > BLANK_WITHIN_MM:
+    off_mm = float(shapely.hausdorff_distance(edge.line, found[0]))
+    if off_mm > BLANK_WITHIN_MM:
         message = (
-            f"the {edge.name} lies up to {off_mm[nearest]:.3f} mm from where the movement has it; "
+            f"the {edge.name} lies up to {off_mm:.3f} mm from where the movement has it; "
             f"the limit is {BLANK_WITHIN_MM:g} mm"
         )
-        findings.append(_differs(edge, message, off_mm[nearest]))
-    for place, line in enumerate(found):
-        if place != nearest:
-            again = float(shapely.hausdorff_distance(found[nearest], line)) <= SAME_CUT_MM
-            findings.append(_twice(edge) if again else _extra(line, edge))
+        findings.append(_differs(edge, message, off_mm))
+    for line in found[1:]:
+        again = max(abs(a - b) for a, b in zip(found[0].bounds, line.bounds, strict=True)) <= SAME_CUT_MM
+        findings.append(_twice(edge) if again else _extra(line, edge))
     return findings
 
 

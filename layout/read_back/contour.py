@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from layout.mechanics.arrays import BoolArray, FloatArray, frozen_floats
+from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats
 from layout.read_back.limits import REPEATED_WITHIN_MM, STRAIGHT_WITHIN_MM, TRACED_WITHIN_MM
 
 
@@ -43,30 +43,40 @@ class Contour:
             closed=closed,
         )
 
+    def trace_steps(self) -> IntArray:
+        """Shape (k,). How many chords trace each piece within the tolerance."""
+        ends = np.roll(self.points_mm, -1, axis=0)
+        bulge = np.abs(self.bulge_ratio)
+        arcs = bulge > 0
+        # DXF reference: bulge = tan(included angle/4); so the radius is chord·(1 + b²)/(4b).
+        chord_mm = np.hypot(*(ends - self.points_mm).T)
+        radius_mm = np.divide(chord_mm * (1 + bulge**2), 4 * bulge, out=np.zeros(len(bulge)), where=arcs)
+        return np.where(arcs, steps_of_arcs(radius_mm, 4 * np.arctan(bulge)), 1)
+
     def traced_mm(self) -> FloatArray:
         """Points along the contour, arcs included, near enough to measure by; the first is not repeated."""
         ends = np.roll(self.points_mm, -1, axis=0)
-        pieces = zip(self.points_mm, ends, self.bulge_ratio.tolist(), strict=True)
-        traced = [_traced_piece_mm(start, end, bulge) for start, end, bulge in pieces]
+        steps = self.trace_steps().tolist()
+        pieces = zip(self.points_mm, ends, self.bulge_ratio.tolist(), steps, strict=True)
+        traced = [_traced_piece_mm(start, end, bulge, count) for start, end, bulge, count in pieces]
         return np.concatenate(traced) if self.closed else np.concatenate([*traced[:-1], self.points_mm[-1:]])
 
 
-def steps_of_arc(radius_mm: float, angle_rad: float) -> int:
-    """How many chords trace an arc within the tolerance."""
-    if radius_mm <= TRACED_WITHIN_MM:
-        return 4
-    return max(math.ceil(abs(angle_rad) / (2 * math.acos(1 - TRACED_WITHIN_MM / radius_mm))), 1)
+def steps_of_arcs(radius_mm: FloatArray, angle_rad: FloatArray) -> IntArray:
+    """How many chords trace arcs within the tolerance; a chord of angle θ lies r·(1 − cos(θ/2)) inside."""
+    within = np.minimum(TRACED_WITHIN_MM / np.maximum(radius_mm, TRACED_WITHIN_MM), 1.0)
+    steps: FloatArray = np.maximum(np.ceil(angle_rad / (2 * np.arccos(1 - within))), 1)
+    return steps.astype(np.int64)
 
 
-def _traced_piece_mm(start: FloatArray, end: FloatArray, bulge: float) -> FloatArray:
+def _traced_piece_mm(start: FloatArray, end: FloatArray, bulge: float, steps: int) -> FloatArray:
     chord = complex(*(end - start))
     if bulge == 0 or chord == 0:
         return np.asarray(start[None])
-    # DXF reference: bulge = tan(included angle/4); the centre lies (1 − b²)/(4b) chords left of the middle.
+    # The centre lies (1 − b²)/(4b) chords left of the chord's middle.
     to_centre = chord * (0.5 + 1j * (1 - bulge**2) / (4 * bulge))
-    angle_rad = 4 * math.atan(bulge)
-    steps = steps_of_arc(abs(to_centre), angle_rad)
-    along = complex(*start) + to_centre - to_centre * np.exp(1j * angle_rad * np.arange(steps) / steps)
+    turned = np.exp(4j * math.atan(bulge) * np.arange(steps) / steps)
+    along = complex(*start) + to_centre - to_centre * turned
     return np.stack([along.real, along.imag], axis=-1)
 
 

@@ -1,9 +1,10 @@
 """What reading back accepts and how closely a cut must agree, in one table."""
 
 MOST_MIB = 10  # MiB; a disc of 3000 projections takes about 1, other programs' files some times that
-MOST_CUTS = 20_000  # contours and points; ten times the fullest disc of 67 tracks
-MOST_VERTICES = 20_000  # vertices of one contour; keeps a comparison of two outlines short
-FARTHEST_MM = 10_000.0  # mm; no disc is 20 m across, and what lies farther off was not drawn in mm
+MOST_CUTS = 10_000  # contours and points; several times the fullest disc of 67 tracks
+MOST_VERTICES = 20_000  # vertices of one contour; a rim drawn in straight pieces of 0.1 mm has 13,000
+MOST_TRACED = 1_000_000  # points that trace holes and rim; 1,000 rims of the largest disc
+FARTHEST_MM = 2_000.0  # mm; no disc is 4 m across, and what lies farther off was not drawn in mm
 
 REPEATED_WITHIN_MM = 1e-6  # mm; below what a file of six decimals can tell apart
 STRAIGHT_WITHIN_MM = 1e-5  # mm; a vertex this near a straight line was put in by a program, not by a person

@@ -111,15 +111,25 @@ def test_a_disc_without_room_has_no_lettering() -> None:
     assert texts(plan.disc) == []
 
 
-def test_a_place_that_a_clamp_hides_is_used_for_the_fingerprint_and_warnings_only() -> None:
+def test_lettering_and_mark_keep_out_of_places_that_a_clamp_hides() -> None:
     clamped = movement_with({"keep_out": [{"from_radius_mm": 0, "to_radius_mm": 49, "why": "clamp"}]})
 
     plan = plan_of(disc_of(clamped, []), not_good="a trial piece")
 
-    # Between track 3 and the rim there is room for a line or two of straight letters, none inside track 1.
-    rings = shapely.Point(0, 0).buffer(49)
+    # Nothing is left inside track 1; between track 3 and the rim there is room for a line or two.
     assert texts(plan.disc)[0] == "NOT GOOD TO CUT"
-    assert not strokes_of(plan.disc).intersects(rings)
+    assert not strokes_of(plan.disc).intersects(shapely.Point(0, 0).buffer(49))
+
+
+def test_where_a_clamp_hides_all_room_there_is_still_the_least_that_must_be_said() -> None:
+    clamped = movement_with({"keep_out": [{"from_radius_mm": 0, "to_radius_mm": 120, "why": "clamp"}]})
+
+    plan = plan_of(disc_of(clamped, []), not_good="a trial piece")
+    good = plan_of(disc_of(clamped, []))
+
+    assert texts(plan.disc)[:2] == ["NOT GOOD TO CUT", FINGERPRINT]
+    assert FINGERPRINT in texts(good.disc)
+    assert index_mark(plan.disc).points_mm[0, :, 0].max() < 48.98
 
 
 def test_letters_read_right_on_the_side_drawn() -> None:

@@ -75,6 +75,17 @@ def test_more_cuts_than_a_disc_can_have_are_refused(monkeypatch: pytest.MonkeyPa
         read(GOOD)
 
 
+def test_a_blank_drawn_too_finely_is_refused() -> None:
+    document = disc_document(disc_of(PLAIN, []))
+    for place in range(1000):
+        document.modelspace().add_circle((place / 1000, 0), 1900, dxfattribs={"layer": "HOLES"})
+
+    # A chord of a circle of 1900 mm may lie 0.002 mm inside: 2·acos(1 − 0.002/1900) = 0.0029019 rad, 1083 for half
+    # a circle; 1000 circles take 2166000 points, and the centre hole of 5 mm 2·ceil(π/0.0565712) = 112.
+    with pytest.raises(DrawingReadError, match="layer HOLES takes 2166112 points to compare, allowed are 1000000"):
+        read(bytes_of(document))
+
+
 def test_a_contour_with_too_many_vertices_is_not_compared(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("layout.read_back.entities.MOST_VERTICES", 7)
 
