@@ -22,6 +22,7 @@ _MOST_OF_EDGE = 0.3  # of its length: how thick a working edge is drawn at most
 _ARROW_FROM_DEG, _ARROW_TO_DEG = 52.0, 33.0  # on the page, up from the right: beside the upper right corner's words
 _ARROW_OUT, _ARROW_HEAD = 2.2, 1.5  # hundredths of the page's width
 _ROW_GAP, _ROW_MARK = 0.8, 2.0
+_ROW_DASHES_RATIO = (0.012, 0.004, 0.002, 0.004)
 
 
 def layer_groups(plan: CutPlan, page: Page) -> list[Group]:
@@ -40,8 +41,8 @@ def _layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
         id=layer.lower(),
         fill=style.fill,
         stroke=style.stroke,
-        stroke_width=page.units(style.line),
-        stroke_dasharray=" ".join(page.units(length) for length in style.dashes) or None,
+        stroke_width=page.part(style.line_ratio),
+        stroke_dasharray=page.dashes(style.dashes_ratio),
         stroke_linecap="round",
         stroke_linejoin="round",
         debug=False,
@@ -105,9 +106,8 @@ def row_of_star_wheels(disc: Disc, plan: CutPlan, page: Page) -> Group:
     half_mm = page.units_mm(_ROW_MARK / 2)
     group = Group(id="star_wheels", stroke=WORD_GREY, stroke_width=page.units(0.09), fill=WORD_GREY, debug=False)
     group.elements.append(Title("row of star wheels, the disc at rest"))
-    dashes = " ".join(page.units(length) for length in (1.2, 0.4, 0.2, 0.4))
     line = f"M{_place((from_mm, -row_mm))}L{_place((rim_mm, -row_mm))}"
-    group.add(Path(d=line, stroke_dasharray=dashes, debug=False))
+    group.add(Path(d=line, stroke_dasharray=page.dashes(_ROW_DASHES_RATIO), debug=False))
     corners = [(tip_mm, -row_mm), (back_mm, -row_mm - half_mm), (back_mm, -row_mm + half_mm)]
     group.add(Path(d="M" + "L".join(map(_place, corners)) + "Z", stroke="none", debug=False))
     return group

@@ -48,7 +48,7 @@ def _swatches(plan: CutPlan) -> Iterator[tuple[str, str, str, float]]:
     for layer in _EXPLAINED:
         if layer in present:
             style = LAYER_STYLES[layer]
-            yield style.title, style.stroke, style.fill, max(style.line, _LEAST_SWATCH_LINE)
+            yield style.title, style.stroke, style.fill, max(100 * style.line_ratio, _LEAST_SWATCH_LINE)
     yield "row of star wheels at rest", WORD_GREY, "none", _LEAST_SWATCH_LINE
 
 

@@ -111,7 +111,7 @@ def _marker(
             r=radius,
             stroke=style.ring,
             stroke_width=page.units(_LINE),
-            stroke_dasharray=" ".join(page.units(length) for length in style.dashes) or None,
+            stroke_dasharray=page.dashes(style.dashes_ratio),
             debug=False,
         )
     )

@@ -24,6 +24,7 @@ from layout.write.svg_style import (
 )
 
 NOT_GOOD = "NOT GOOD TO CUT"
+_REASON_SIZE = 2.2
 _BAND, _GOOD_LINE, _HEAD = 8.2, 4.6, 10.2  # heights in hundredths of the page's width
 
 
@@ -83,11 +84,13 @@ def _not_good(plan: CutPlan, laid_out: LaidOut, page: Page, top_mm: float) -> Gr
     verdict = Face(size_mm=page.units_mm(VERDICT_SIZE), bold=True, colour=WHITE)
     inside_mm = left_mm + page.units_mm(2)
     group.add(words(NOT_GOOD, (inside_mm, top_mm + page.units_mm(3.9)), verdict))
-    why = Face(size_mm=page.units_mm(2.2), colour=WHITE)
-    counts = ", ".join(level_counts(laid_out))
-    asked = "cutting files kept back" if plan.not_good is None else f"cutting files given because: {plan.not_good}"
-    reason = shortened(f"{counts}; {asked}" if counts else asked, why, width_mm - page.units_mm(4))
+    why = Face(size_mm=page.units_mm(_REASON_SIZE), colour=WHITE)
+    reason = "cutting files kept back" if plan.not_good is None else f"cutting files given because: {plan.not_good}"
+    reason = shortened(reason, why, width_mm - page.units_mm(4))
     group.add(words(reason, (inside_mm, top_mm + page.units_mm(6.5)), why))
+    counts = Face(size_mm=page.units_mm(_REASON_SIZE), colour=WHITE, anchor="end")
+    right_mm = left_mm + width_mm - page.units_mm(2)
+    group.add(words(", ".join(level_counts(laid_out)), (right_mm, top_mm + page.units_mm(3.9)), counts))
     return group
 
 

@@ -41,6 +41,14 @@ class Page:
         """The same, as text."""
         return short(self.units_mm(units))
 
+    def part(self, width_ratio: float) -> str:
+        """So much of the page's width, as text."""
+        return short(self.width_mm * width_ratio)
+
+    def dashes(self, dashes_ratio: tuple[float, ...]) -> str | None:
+        """Dash and gap lengths as SVG wants them; None for a full line."""
+        return " ".join(map(self.part, dashes_ratio)) or None
+
     @property
     def left_mm(self) -> float:
         """Left edge of what is written."""

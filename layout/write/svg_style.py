@@ -4,8 +4,9 @@ Colours are those of Okabe and Ito, "Color Universal Design" (2008), from memory
 with any colour vision tell apart. What a colour says is also said by a shape, a line or a word, so
 that a black and white print loses nothing.
 
-Widths and sizes are hundredths of the picture's width, so that a small disc and a large one look
-alike: at 400 pixels across, one unit is 4 pixels; on an A3 sheet, 2.97 mm.
+Widths and sizes are parts of the picture's width, so that a small disc and a large one look alike.
+Where no ratio is named they are hundredths of it: at 400 pixels across, one is 4 pixels; on an A3
+sheet, 2.97 mm.
 """
 
 from dataclasses import dataclass
@@ -26,36 +27,38 @@ EMPHASIS_WIDTH = 0.16  # of working edges
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class LayerStyle:
-    """How one layer is drawn; widths and dashes in hundredths of the picture's width.
+    """How one layer is drawn.
 
     Attributes:
         title: What it is, in the legend and for screen readers.
         stroke: Line colour, or "none".
         fill: Colour inside, or "none".
-        line: Line width.
-        dashes: Dash and gap lengths; empty for a full line.
+        line_ratio: Line width, over the picture's width.
+        dashes_ratio: Dash and gap lengths, over the picture's width; empty for a full line.
     """
 
     title: str
     stroke: str
     fill: str
-    line: float
-    dashes: tuple[float, ...] = ()
+    line_ratio: float
+    dashes_ratio: tuple[float, ...] = ()
 
 
 # In painting order, the last on top.
 LAYER_STYLES: MappingProxyType[LayerName, LayerStyle] = MappingProxyType(
     {
-        "RIM": LayerStyle(title="rim", stroke=BLACK, fill=SHEET, line=0.16),
-        "TRACKS": LayerStyle(title="track", stroke=TRACK_GREY, fill="none", line=0.05),
-        "AFTER_FORMING": LayerStyle(title="opening after forming", stroke="none", fill=SKY_BLUE, line=0.0),
-        "SLITS": LayerStyle(title="slit", stroke=BLUE, fill="none", line=0.035),
-        "SLOTS": LayerStyle(title="slot", stroke=BLUE, fill="none", line=0.06),
-        "FOLDS": LayerStyle(title="fold line", stroke=BLUISH_GREEN, fill="none", line=0.035, dashes=(0.12, 0.08)),
-        "HITS": LayerStyle(title="hit", stroke=REDDISH_PURPLE, fill="none", line=0.18),
-        "HOLES": LayerStyle(title="hole", stroke=BLACK, fill=WHITE, line=0.12),
-        "LEADS": LayerStyle(title="lead-in", stroke=VERMILION, fill="none", line=0.05),
-        "MARKS": LayerStyle(title="engraved mark", stroke=BLACK, fill="none", line=0.09),
+        "RIM": LayerStyle(title="rim", stroke=BLACK, fill=SHEET, line_ratio=0.0016),
+        "TRACKS": LayerStyle(title="track", stroke=TRACK_GREY, fill="none", line_ratio=0.0005),
+        "AFTER_FORMING": LayerStyle(title="opening after forming", stroke="none", fill=SKY_BLUE, line_ratio=0.0),
+        "SLITS": LayerStyle(title="slit", stroke=BLUE, fill="none", line_ratio=0.00035),
+        "SLOTS": LayerStyle(title="slot", stroke=BLUE, fill="none", line_ratio=0.0006),
+        "FOLDS": LayerStyle(
+            title="fold line", stroke=BLUISH_GREEN, fill="none", line_ratio=0.00035, dashes_ratio=(0.0012, 0.0008)
+        ),
+        "HITS": LayerStyle(title="hit", stroke=REDDISH_PURPLE, fill="none", line_ratio=0.0018),
+        "HOLES": LayerStyle(title="hole", stroke=BLACK, fill=WHITE, line_ratio=0.0012),
+        "LEADS": LayerStyle(title="lead-in", stroke=VERMILION, fill="none", line_ratio=0.0005),
+        "MARKS": LayerStyle(title="engraved mark", stroke=BLACK, fill="none", line_ratio=0.0009),
     }
 )
 
@@ -66,15 +69,17 @@ class LevelStyle:
 
     word: str
     ring: str
-    dashes: tuple[float, ...]
+    dashes_ratio: tuple[float, ...]
     badge: str
     digits: str
 
 
 LEVEL_STYLES: MappingProxyType[Level, LevelStyle] = MappingProxyType(
     {
-        Level.ERROR: LevelStyle(word="Error", ring=VERMILION, dashes=(), badge=BLACK, digits=WHITE),
-        Level.WARNING: LevelStyle(word="Warning", ring=ORANGE, dashes=(1.0, 0.5), badge=WHITE, digits=BLACK),
-        Level.ADVICE: LevelStyle(word="Advice", ring=BLUISH_GREEN, dashes=(0.3, 0.45), badge=WHITE, digits=BLACK),
+        Level.ERROR: LevelStyle(word="Error", ring=VERMILION, dashes_ratio=(), badge=BLACK, digits=WHITE),
+        Level.WARNING: LevelStyle(word="Warning", ring=ORANGE, dashes_ratio=(0.01, 0.005), badge=WHITE, digits=BLACK),
+        Level.ADVICE: LevelStyle(
+            word="Advice", ring=BLUISH_GREEN, dashes_ratio=(0.003, 0.0045), badge=WHITE, digits=BLACK
+        ),
     }
 )

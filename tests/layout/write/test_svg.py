@@ -192,14 +192,14 @@ def test_a_disc_with_an_error_is_called_not_good_to_cut() -> None:
     shown = texts_of(svg_of(ONE_FOLD, findings=(THIN_WEB,)))
 
     assert "NOT GOOD TO CUT" in shown
-    assert "1 error; cutting files kept back" in shown
+    assert {"1 error", "cutting files kept back"} <= set(shown)
     assert not any(text.startswith("Good") for text in shown)
 
 
 def test_the_reason_for_cutting_a_faulty_disc_is_shown() -> None:
     shown = texts_of(svg_of(ONE_FOLD, findings=(THIN_WEB,), not_good="trial piece"))
 
-    assert "1 error; cutting files given because: trial piece" in shown
+    assert "cutting files given because: trial piece" in shown
 
 
 @pytest.mark.parametrize("findings", [(), (THIN_WEB,)], ids=["good", "not good"])
