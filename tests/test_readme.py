@@ -1,0 +1,140 @@
+"""The README is run and held against the program: its commands, its tables, its settings."""
+
+import json
+import re
+import shutil
+import socket
+import subprocess
+import sys
+import time
+from collections.abc import Iterator
+from pathlib import Path
+from typing import get_args
+
+import ezdxf
+import pytest
+
+from layout import walk
+from layout.arrange.arrangement import LeftOutReason
+from layout.documents import Settings
+from service.api.problems import PROBLEMS
+from service.limits import Limits
+
+TOP = Path(__file__).parent.parent
+README = (TOP / "README.md").read_text()
+BLOCKS = re.findall(r"```sh\n(.*?)```", README, flags=re.DOTALL)
+CURL = [command for block in BLOCKS for command in re.findall(r"^curl .*?[^\\]$", block, re.DOTALL | re.MULTILINE)]
+COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith("discwright ")]
+
+
+@pytest.fixture(scope="module")
+def address(tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
+    """A running service, as `discwright serve` starts it, on a free port."""
+    with socket.socket() as probe:
+        probe.bind(("127.0.0.1", 0))
+        port = probe.getsockname()[1]
+    cache = tmp_path_factory.mktemp("cache")
+    command = [sys.executable, "-m", "service.commands.main", "serve", "--port", str(port)]
+    with (cache / "log").open("w") as log:
+        process = subprocess.Popen(
+            command, cwd=TOP, env={"DISCWRIGHT_CACHE": str(cache), "PATH": ""}, stdout=log, stderr=log
+        )
+        try:
+            for _ in range(300):
+                assert process.poll() is None
+                with socket.socket() as probe:
+                    if probe.connect_ex(("127.0.0.1", port)) == 0:
+                        break
+                time.sleep(0.1)
+            yield f"http://127.0.0.1:{port}"
+        finally:
+            process.terminate()
+            process.wait(timeout=30)
+
+
+def run(command: str, folder: Path) -> subprocess.CompletedProcess[str]:
+    """A command line of the README, in a folder that has the demo tune where the README says."""
+    demo = folder / "service/demo"
+    demo.mkdir(parents=True, exist_ok=True)
+    shutil.copy(TOP / "service/demo/tune.mid", demo)
+    return subprocess.run(["sh", "-c", command], cwd=folder, capture_output=True, text=True, check=False)
+
+
+@pytest.mark.skipif(shutil.which("curl") is None, reason="the README's examples need curl")
+@pytest.mark.parametrize("command", CURL)
+def test_a_curl_line_of_the_readme_works(command: str, address: str, tmp_path: Path) -> None:
+    result = run(command.replace("http://127.0.0.1:8000", address), tmp_path)
+
+    assert result.stderr == ""
+    assert result.returncode == 0
+    told = re.search(r"-o (\S+)", command)
+    if told is None:
+        assert json.loads(result.stdout)
+    elif told[1].endswith(".dxf"):
+        assert len(ezdxf.readfile(tmp_path / told[1]).modelspace().query("LWPOLYLINE[layer=='SLITS']")) > 300
+    elif told[1].endswith(".svg"):
+        assert "<svg" in (tmp_path / told[1]).read_text()
+    else:
+        assert set(walk.FILES) <= set(json.loads((tmp_path / told[1]).read_text())["links"])
+
+
+def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> None:
+    program = f"{sys.executable} -m service.commands.main"
+
+    for command in COMMANDS:
+        line = f"PYTHONPATH='{TOP}' {program} {command.removeprefix('discwright ')}"
+        result = run(line, tmp_path)
+
+        assert result.returncode == 0, f"{command}: {result.stderr}"
+        assert result.stdout
+
+    assert {path.name for path in (tmp_path / "demo/by-hand").iterdir()} == set(walk.FILES)
+
+
+def test_the_readme_has_examples_to_run() -> None:
+    assert len(CURL) == 7
+    assert len(COMMANDS) == 6
+
+
+def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:
+    rows = re.findall(r"^\| `(/problems/[a-z-]+)` \| (\d+) \|", README, flags=re.MULTILINE)
+
+    assert dict(rows) == {kind.type: str(kind.status) for kind in PROBLEMS.values()}
+
+
+def test_every_file_stands_in_the_readme() -> None:
+    rows = re.findall(r"^\| `([\w.]+\.\w+)` \|", README, flags=re.MULTILINE)
+
+    assert sorted(rows) == sorted(walk.FILES)
+
+
+def test_the_settings_shown_are_the_defaults() -> None:
+    [block] = re.findall(r"```json\n(.*?)```", README, flags=re.DOTALL)
+
+    assert json.loads(block) == Settings().model_dump(mode="json")
+
+
+def test_the_reasons_shown_are_those_a_note_can_have() -> None:
+    [listed] = re.findall(r"left out has one of these reasons: (.*?)\.\n", README, flags=re.DOTALL)
+
+    # the drive is not checked yet, and the README says so
+    assert set(re.findall(r"`([a-z-]+)`", listed)) == set(get_args(LeftOutReason)) - {"drive-torque"}
+
+
+def test_the_limits_shown_are_the_limits() -> None:
+    limits = {limit.name: limit.value for limit in Limits().told()}
+
+    assert limits["upload_bytes"] == 2 * 1024 * 1024
+    assert "| upload | 2 MiB |" in README
+    assert limits["tune_notes"] == 50_000
+    assert "| notes of a tune | 50,000 |" in README
+    assert limits["tune_last_onset_s"] == 4 * 3600
+    assert "| last onset of a tune | 4 h |" in README
+
+
+def test_the_first_paragraph_states_the_job() -> None:
+    first = README.split("\n\n")[1]
+
+    assert "MIDI file" in first
+    assert "movement" in first
+    assert "can be cut" in first
