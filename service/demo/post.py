@@ -21,6 +21,7 @@ from typing import Any
 import mido
 
 ANSWER_WITHIN_S = 120.0  # as long as service/up lets a worker compute
+OUTSIDE = "outside-passage"  # the reason of notes the demo did not ask for
 INTERRUPTED = 130  # common practice: 128 + the number of SIGINT
 
 
@@ -134,12 +135,16 @@ def _detail(body: bytes) -> str:
 def report(layout: dict[str, Any]) -> list[str]:
     """Lines that say what a disc keeps of the tune, what it leaves out and why, and what was found."""
     kept = sum(len(projection["notes"]) for projection in layout["projections"])
-    left_out = layout["left_out"]
+    left_out = [note for note in layout["left_out"] if note["reason"] != OUTSIDE]
+    outside = len(layout["left_out"]) - len(left_out)
+    of_what = f"the {kept + len(left_out)} notes of the passage" if outside else f"{kept + len(left_out)} notes"
     found = layout["findings"]
     moved = f"moved by {layout['transposed_semitones']:+g} semitones"
-    lines = [f"kept {kept} of {kept + len(left_out)} notes, {moved}"]
+    lines = [f"kept {kept} of {of_what}, {moved}"]
     if left_out:
         lines.append(f"left out {len(left_out)}: {_tally(note['reason'] for note in left_out)}")
+    if outside:
+        lines.append(f"outside the passage: {outside} notes")
     errors = [finding for finding in found if finding["level"] == "error"]
     lines.append("NOT GOOD TO CUT" if errors else "good to cut")
     lines += [f"error {finding['code']}: {finding['message']}" for finding in errors]

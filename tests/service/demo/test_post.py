@@ -142,6 +142,16 @@ def test_the_report_counts_what_is_kept_and_why_the_rest_is_left_out() -> None:
     ]
 
 
+def test_the_report_counts_notes_outside_the_passage_apart() -> None:
+    outside = [{"note": 8, "reason": "outside-passage"}, {"note": 9, "reason": "outside-passage"}]
+
+    lines = post.report(LAYOUT | {"left_out": [*LAYOUT["left_out"], *outside]})
+
+    assert lines[0] == "kept 3 of the 6 notes of the passage, moved by -3 semitones"
+    assert lines[1] == "left out 3: 1 no-such-pitch, 2 web"
+    assert "outside the passage: 2 notes" in lines
+
+
 def test_the_report_says_what_stands_against_cutting() -> None:
     fault = {"code": "web-thin", "level": "error", "message": "0.1 mm of web"}
 
