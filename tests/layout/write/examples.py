@@ -23,6 +23,8 @@ MOSSBROOK = shipped_movement("mossbrook-67")
 TARNLIGHT = shipped_movement("tarnlight-17")
 LASER = shipped_cutter("fibre-laser")
 PRESS = shipped_cutter("turn-press")
+OPEN_FOLD = {"inside_radius_mm": 0.4, "fold_side": "behind", "relief_mm": 0.3, "slit": "centre-line"}
+OPEN_LASER = Cutter.model_validate(LASER.model_dump() | {"id": "open-laser", "fold": OPEN_FOLD})
 FINGERPRINT = "0123456789abcdef"
 
 
@@ -43,6 +45,7 @@ ONE_FOLD = disc_of(FERNHOLLOW, LASER, [(5, 90.0)])  # track 5: 36 + 4 * 2.62 = 4
 THREE_FOLDS = disc_of(FERNHOLLOW, LASER, [(1, 20.0), (16, 200.0), (31, 359.0)])
 THREE_SLOTS = disc_of(TARNLIGHT, LASER, [(1, 20.0), (9, 200.0), (17, 359.0)])
 THREE_LANCES = disc_of(MOSSBROOK, PRESS, [(1, 20.0), (33, 200.0), (67, 270.0)])
+OPEN_SLITS = disc_of(FERNHOLLOW, OPEN_LASER, [(3, 10.0), (20, 130.0)])
 SLOTS_ON_A_PRESS = disc_of(TARNLIGHT, PRESS, [(2, 45.0), (9, 300.0)])
 EXAMPLE_DISCS = {
     "empty disc": EMPTY_DISC,
@@ -50,6 +53,7 @@ EXAMPLE_DISCS = {
     "three folds": THREE_FOLDS,
     "three slots": THREE_SLOTS,
     "three lances": THREE_LANCES,
+    "open slits": OPEN_SLITS,
     "slots on a press": SLOTS_ON_A_PRESS,
 }
 
