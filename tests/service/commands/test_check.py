@@ -5,6 +5,7 @@ import pytest
 
 from layout.write import layout_json
 from service.commands.findings import finding_lines, finding_told
+from service.commands.main import main
 from tests.service.commands.conftest import Discwright
 from tests.service.fakes import NEAR_RIM, THIN_WEB, FakePlanner
 
@@ -101,3 +102,16 @@ def test_a_drawing_that_is_not_there_is_one_line_and_exit_2(
     assert told.err == (
         f"discwright: the drawing '{tmp_path}/none.dxf' cannot be read: No such file or directory; check the path\n"
     )
+
+
+@pytest.mark.parametrize("content", [b"", b"a drawing", b"  0\nSECTION\n  2\nENTITIES\n", bytes(1000)])
+def test_what_is_no_drawing_is_one_line_and_exit_2(
+    drawing: Path, capsys: pytest.CaptureFixture[str], content: bytes
+) -> None:
+    drawing.write_bytes(content)
+
+    code = main(["check", str(drawing), "--movement", "fernhollow-31", "--json"])  # with the real computation
+
+    told = capsys.readouterr()
+    assert (code, told.out, told.err.count("\n")) == (2, "", 1)
+    assert told.err.startswith("discwright: ")
