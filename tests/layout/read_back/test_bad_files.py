@@ -58,6 +58,14 @@ def test_a_drawing_without_a_unit_is_taken_as_millimetres() -> None:
     assert read(dxf).findings == ()
 
 
+def test_the_shortest_drawing_there_is_has_no_header_and_is_taken_as_millimetres() -> None:
+    # DXF reference: a file of nothing but entities is complete; the plain blank has a hole of 10 and a rim of 240 mm.
+    circles = [(5, "HOLES"), (120, "RIM")]
+    entities = "".join(f"0\nCIRCLE\n8\n{layer}\n10\n0.0\n20\n0.0\n40\n{radius}.0\n" for radius, layer in circles)
+
+    assert read(f"0\nSECTION\n2\nENTITIES\n{entities}0\nENDSEC\n0\nEOF\n".encode()).findings == ()
+
+
 @pytest.mark.parametrize("value", ["1e300", "-20000", "nan", "inf"])
 def test_a_coordinate_far_off_or_no_number_is_refused(value: str) -> None:
     document = disc_document(disc_of(PLAIN, [(1, 5.0)]))

@@ -264,6 +264,17 @@ def test_a_cut_that_is_nothing_of_this_movement_is_an_error(add: Any, said: str)
     assert reading.disc.projection_count == 2
 
 
+def test_a_projection_on_the_wrong_layer_is_not_taken_for_one() -> None:
+    document = disc_document(TWO)
+    slit_of_track(document, 3).dxf.layer = "SLOTS"
+
+    reading = read(document)
+
+    assert only(reading).code is Code.UNKNOWN_CUT
+    assert only(reading).message.startswith("layer SLOTS has a closed outline of 8 vertices that is no projection")
+    assert_only_track(reading, 1)
+
+
 def test_a_press_drawing_with_outlines_says_that_a_press_draws_hits() -> None:
     document = disc_document(disc_of(PLAIN, [(1, 5.0)], PRESS))
     document.modelspace().add_lwpolyline([(70, 0), (72, 0), (72, 1)], close=True, dxfattribs={"layer": "SLITS"})
