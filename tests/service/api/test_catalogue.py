@@ -11,6 +11,7 @@ from layout.documents import (
     shipped_movement_ids,
 )
 from layout.read.limits import LIMITS
+from service.api.answers import json_bytes
 from service.limits import Limits
 from tests.service.fakes import Client
 
@@ -89,6 +90,15 @@ def test_the_addresses_named_at_the_top_are_there(client: Client) -> None:
 
     codes = {name: client.get(path).status_code for name, path in links.items()}
     assert codes == {**dict.fromkeys(links, 200), "layouts": 405}  # layouts are only posted to
+
+
+def test_json_writes_half_a_letter_as_the_escape_json_has_for_it() -> None:
+    value = {"Dünung": "\ud800"}
+
+    text = json_bytes(value)
+
+    assert text == '{\n  "Dünung": "\\ud800"\n}\n'.encode()
+    assert json.loads(text) == value
 
 
 def test_json_is_utf_8_with_its_own_letters(client: Client) -> None:

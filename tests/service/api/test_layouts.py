@@ -170,6 +170,15 @@ def test_a_reason_given_by_another_worker_s_layout_marks_the_file_too(tmp_path: 
     assert given.data == b"disc.dxf of Harvest Dance NOT GOOD TO CUT: trial"
 
 
+def test_a_reason_marks_the_layout_it_is_given_for(faulty_client: Client) -> None:
+    first = faulty_client.post_tune().headers["Location"]
+    faulty_client.post_parts({"tune": (BytesIO(TUNE), "a.mid"), "settings": '{"title": "Another"}'})
+
+    given = faulty_client.get(f"{first}/disc.dxf?despite_findings=trial")
+
+    assert given.data == b"disc.dxf of Harvest Dance NOT GOOD TO CUT: trial"
+
+
 def test_one_request_gives_a_marked_cutting_file(faulty_client: Client) -> None:
     answer = faulty_client.post_tune(query="movement=fernhollow-31&despite_findings=trial", Accept="image/vnd.dxf")
 

@@ -312,10 +312,11 @@ def test_a_body_that_ends_too_soon(client: Client) -> None:
         "/v1/layouts?movement=fernhollow-31",
         input_stream=BytesIO(TUNE),
         content_type="audio/midi",
-        environ_overrides={"CONTENT_LENGTH": str(len(TUNE) + 10)},
+        environ_overrides={"CONTENT_LENGTH": str(len(TUNE) + 10), "wsgi.input_terminated": True},
     )
 
-    refuse(answer, "request-malformed", ".")
+    # "MThd a tune" has 11 bytes, 10 more were announced
+    refuse(answer, "request-malformed", "the body ended after 11 bytes, but Content-Length says 21; send it again")
 
 
 def test_a_fault_of_the_service_is_logged_and_not_told(tmp_path: Path, caplog: pytest.LogCaptureFixture) -> None:
