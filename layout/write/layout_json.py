@@ -5,7 +5,6 @@ import math
 from typing import Any
 
 from layout.check.finding import Finding, Place
-from layout.documents.movement import FULL_TURN_DEG
 from layout.version import ENGINE_VERSION
 from layout.write.laid_out import LaidOut
 
@@ -106,7 +105,7 @@ def _projections(laid_out: LaidOut) -> list[Record]:
             "teeth": teeth.get(track, []),
             "pitch": pitches.get(track, ""),
             "radius_mm": radius_mm,
-            "angle_deg": math.degrees(angle_rad) % FULL_TURN_DEG,  # just below 2π it rounds to 360
+            "angle_deg": math.degrees(angle_rad),
             "asked_s": asked_s,
             "sounds_s": sounds_s,
             "notes": list(notes),

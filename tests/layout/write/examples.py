@@ -43,7 +43,7 @@ def disc_of(movement: Movement, cutter: Cutter, placed: list[tuple[int, float]])
 EMPTY_DISC = disc_of(FERNHOLLOW, LASER, [])
 ONE_FOLD = disc_of(FERNHOLLOW, LASER, [(5, 90.0)])  # track 5: 36 + 4 * 2.62 = 46.48 mm
 THREE_FOLDS = disc_of(FERNHOLLOW, LASER, [(1, 20.0), (16, 200.0), (31, 359.0)])
-THREE_SLOTS = disc_of(TARNLIGHT, LASER, [(1, 20.0), (9, 200.0), (17, 359.0)])
+THREE_SLOTS = disc_of(TARNLIGHT, LASER, [(17, 359.0), (1, 20.0), (9, 200.0)])  # cut in another order
 THREE_LANCES = disc_of(MOSSBROOK, PRESS, [(1, 20.0), (33, 200.0), (67, 270.0)])
 OPEN_SLITS = disc_of(FERNHOLLOW, OPEN_LASER, [(3, 10.0), (20, 130.0)])
 SLOTS_ON_A_PRESS = disc_of(TARNLIGHT, PRESS, [(2, 45.0), (9, 300.0)])

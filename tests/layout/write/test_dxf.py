@@ -19,6 +19,7 @@ from tests.layout.write.examples import (
     FINGERPRINT,
     LASER,
     ONE_FOLD,
+    OPEN_SLITS,
     SLOTS_ON_A_PRESS,
     THREE_FOLDS,
     THREE_LANCES,
@@ -65,6 +66,18 @@ def test_gdal_reads_the_outlines_of_folds_as_they_were_planned(tmp_path: Path) -
     assert [shape.is_closed for shape in read] == [True] * 3
     # rounded to 1e-6 mm, so each coordinate is off by half of that at most
     np.testing.assert_allclose([np.array(shape.coords)[:-1] for shape in read], expected, atol=0.5001e-6, rtol=0)
+
+
+def test_gdal_reads_open_slits_as_open(tmp_path: Path) -> None:
+    read = [
+        shape
+        for layer, shape in read_dxf(write_dxf(plan_by_hand(OPEN_SLITS).disc, LASER), tmp_path)
+        if layer == "SLITS"
+    ]
+
+    # the three sides of a tab: four corners
+    assert [len(shape.coords) for shape in read] == [4, 4]
+    assert [shape.is_closed for shape in read] == [False, False]
 
 
 @pytest.mark.parametrize("disc", [THREE_SLOTS, SLOTS_ON_A_PRESS], ids=["laser", "press"])

@@ -83,13 +83,13 @@ def test_a_track_of_two_combs_lists_both_its_teeth_but_not_one_that_is_unusable(
     assert [projection["teeth"] for projection in projections] == [[1, 68], [2]]
 
 
-def test_an_angle_that_rounds_to_a_whole_turn_is_zero() -> None:
+def test_the_greatest_angle_of_a_disc_stays_below_a_whole_turn() -> None:
     disc = disc_of(FERNHOLLOW, LASER, [(1, 0.0)])
     disc = replace(disc, edge_angle_rad=frozen_floats([math.nextafter(2 * math.pi, 0)]))
 
     [projection] = layout_record(laid_out_of(disc))["projections"]
 
-    assert 0 <= projection["angle_deg"] < 360
+    assert 359.9999999 < projection["angle_deg"] < 360
 
 
 def test_findings_hold_their_numbers_and_only_the_places_that_apply() -> None:

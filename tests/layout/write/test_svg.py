@@ -102,6 +102,7 @@ def test_every_outline_is_that_of_the_dxf_files_upside_down(disc: Disc, tmp_path
                 assert len(groups[layer.lower()]) == len(drawn)
                 for one, other in zip(drawn, groups[layer.lower()], strict=True):
                     assert max(farthest_mm(one, other), farthest_mm(other, one)) < 0.001, layer
+                    assert one.length == pytest.approx(other.length, abs=0.002), layer  # so no side is missing
 
 
 def test_the_picture_is_in_millimetres_at_natural_size() -> None:
