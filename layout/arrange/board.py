@@ -13,7 +13,7 @@ from collections.abc import Iterable, Iterator
 import numpy as np
 
 from layout.arrange.asked import NO_TRACK, Asked, Conflict
-from layout.mechanics.arrays import BoolArray, IntArray, frozen_ints
+from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_ints
 from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
@@ -82,15 +82,20 @@ class Board:
         return min(fitting, key=lambda t: (self._last_before(pluck, t), self.least_rad[t], -t), default=None)
 
     def has_room(self, plucks: IntArray, track: int) -> BoolArray:
-        """Shape of plucks. Which of them the track's own edges leave room for; other tracks not looked at."""
+        """Shape of plucks. Which of them, none yet on the board, fit on a track: `conflict` for many at once."""
         turned = self.turned_rad[plucks]
-        edges = np.array(self._edges[track])
-        if not len(edges):
-            return np.full(len(plucks), self.least_rad[track] <= FULL_TURN_RAD)
-        round_edges = np.concatenate([[edges[-1] - FULL_TURN_RAD], edges, [edges[0] + FULL_TURN_RAD]])
-        after = np.searchsorted(edges, turned) + 1
-        apart_rad = np.minimum(turned - round_edges[after - 1], round_edges[after] - turned)
-        return np.asarray(apart_rad >= self.least_rad[track])
+        edges = _thrice_round(self._edges[track])
+        after = np.searchsorted(edges, turned)
+        if len(edges):
+            apart_rad = np.minimum(turned - edges[after - 1], edges[after] - turned)
+        else:
+            apart_rad = np.full(len(turned), FULL_TURN_RAD)
+        room = apart_rad >= self.least_rad[track]
+        for other_track, low, high in self._beside[track]:
+            edges = _thrice_round(self._edges[other_track])
+            before_low = np.searchsorted(edges, turned + low, side="right")
+            room &= np.searchsorted(edges, turned + high) <= before_low
+        return np.asarray(room)
 
     def _nearest(self, pluck: int, track: int) -> tuple[float, int]:
         edges, plucks, turned = self._edges[track], self._plucks[track], self._turned[pluck]
@@ -121,6 +126,12 @@ class Board:
                         apart_rad=abs(edges[at] - here),
                         reason="web",
                     )
+
+
+def _thrice_round(edges: list[float]) -> FloatArray:
+    """The edges of the turn before, of this turn and of the next, so that every φ has both neighbours."""
+    one_turn = np.array(edges)
+    return np.concatenate([one_turn - FULL_TURN_RAD, one_turn, one_turn + FULL_TURN_RAD])
 
 
 def _besides(turning: Turning, spacing: Spacing) -> list[list[_Beside]]:

@@ -1,6 +1,9 @@
+from itertools import chain, combinations, product
 from typing import Any
 
 import pytest
+from hypothesis import example, given, settings
+from hypothesis import strategies as st
 
 from layout.arrange import Arrangement, arrange
 from layout.errors import RulingError
@@ -10,6 +13,7 @@ from tests.layout.arrange.small_comb import (
     Note,
     arranged,
     asking,
+    broken_rules,
     comb_with,
     left_out,
     played,
@@ -88,6 +92,12 @@ def test_the_ruling_of_one_note_forces_the_pluck_it_shares() -> None:
     assert arrangement.notes == ((1, 2),)
 
 
+def test_of_two_equal_notes_the_ruling_that_names_a_track_decides() -> None:
+    arrangement = ruled([(0.0, "E4", 64, 1), (0.0, "E4", 64, 2)], must(0), place(1, 3))
+
+    assert played(arrangement) == [(0.0, 3)]
+
+
 def test_leaving_out_one_of_two_equal_notes_keeps_the_other() -> None:
     arrangement = ruled([(0.0, "C4", 64, 1), (0.0, "C4", 64, 2)], leave_out(0))
 
@@ -129,6 +139,63 @@ def test_going_back_over_several_notes_finds_the_one_way_that_is_left() -> None:
     arrangement = ruled(notes, must(0), must(1), must(2), place(3, 4))
 
     assert played(arrangement) == [(0.0, 3), (0.3, 4), (0.85, 3), (1.3, 4)]
+
+
+# E4 on tracks 1, 3 and 5 and G4 on 2 and 4, where 1 and 2, and 3 and 4, come too near side by side.
+TWO_OF_A_KIND = {
+    **CLOSE_TRACKS,
+    **NEARLY_NO_REST,
+    "teeth": [{"tooth": t, "track": t, "pitch": "G4" if t in {2, 4} else "E4"} for t in (1, 2, 3, 4, 5)],
+}
+TRACKS = {"E4": [0, 2, 4], "G4": [1, 3]}
+CROWDED = comb_with(TWO_OF_A_KIND)
+CROWDED_SPACING = spacing_for(CROWDED, min_web_mm=1.0)
+A_STEP = st.tuples(st.integers(-4, 12), st.sampled_from(["E4", "E4", "G4"]), st.sampled_from([False] * 3 + [True]))
+
+
+@settings(max_examples=150, deadline=None)
+@given(st.lists(A_STEP, min_size=2, max_size=7, unique_by=lambda note: note[:2]), st.integers(0, 2))
+# Two that need going back twice, and over both keys; random tunes seldom do.
+@example([(1, "E4", False), (2, "E4", True), (3, "E4", False), (3, "G4", False), (-4, "E4", False)], 0)
+@example(
+    [(4, "G4", True), (6, "E4", False), (6, "G4", False), (7, "E4", False), (8, "G4", False), (-3, "E4", False)], 1
+)
+def test_notes_that_must_sound_are_refused_only_where_no_way_exists(
+    steps: list[tuple[int, str, bool]], hand: int
+) -> None:
+    # A step is 0.15 s; below 0 it lies at the end of the turn, which is 59.8 s long.
+    movement, spacing = CROWDED, CROWDED_SPACING
+    notes = sorted((step * 0.15 + (0.0 if step >= 0 else 59.8), pitch, by_hand) for step, pitch, by_hand in steps)
+    tracks = [[TRACKS[pitch][hand % len(TRACKS[pitch])]] if by_hand else TRACKS[pitch] for _, pitch, by_hand in notes]
+    rulings = [place(n, tracks[n][0] + 1) if by_hand else must(n) for n, (*_, by_hand) in enumerate(notes)]
+    places = [[(onset_s, track) for track in ours] for (onset_s, _, _), ours in zip(notes, tracks, strict=True)]
+    too_near = {pair for pair in combinations(chain(*places), 2) if broken_rules(pair, movement, spacing)}
+    possible = any(too_near.isdisjoint(combinations(way, 2)) for way in product(*places))
+
+    try:
+        arrangement = arrange(
+            score_of([note[:2] for note in notes]),
+            movement,
+            asking(rulings=rulings, passage={"from_s": 0}),
+            spacing,
+        )
+    except RulingError:
+        assert not possible
+    else:
+        assert left_out(arrangement) == {}
+
+
+def test_the_last_note_moves_the_first_without_trying_all_between() -> None:
+    # Track 3 is taken by hand at 59.4 s, so 59.7 s needs track 4, and so does not the first note, 0.3 s
+    # later in the next turn. The 40 notes between have 2^40 ways, and none of them matters.
+    row: list[Note] = [*((float(second), "E4") for second in range(41)), (59.4, "E4"), (59.7, "E4")]
+    hands = [place(41, 3), *(must(note) for note in range(43) if note != 41)]
+
+    arrangement = ruled(row, *hands, movement=comb_with(NEARLY_NO_REST))
+
+    assert left_out(arrangement) == {}
+    assert played(arrangement)[0] == (0.0, 3)
+    assert played(arrangement)[-2:] == [(59.4, 3), (59.7, 4)]
 
 
 # Rulings that cannot be kept.

@@ -1,4 +1,5 @@
 import math
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -58,6 +59,18 @@ def test_the_reason_is_the_rule_that_the_nearest_pluck_breaks() -> None:
     arrangement = arranged([(0.0, "C4", 90), (1.5, "C4", 1), (5.0, "C4", 90), (5.9, "C4", 1)], movement=movement)
 
     assert left_out(arrangement) == {1: "damper-not-recovered", 3: "wheel-still-stepping"}
+
+
+def test_of_several_tracks_the_one_with_the_nearest_pluck_gives_the_reason() -> None:
+    # The dampers ask for 0.55 s. At 0.59 s the pluck on track 3 (wheel 0.6 s) is 0.59 s away, that
+    # on track 4 (wheel 0.5 s) 0.52 s: nearer, and the damper's fault.
+    hands = [{"note": 0, "do": "place", "track": 3}, {"note": 1, "do": "place", "track": 4}]
+
+    arrangement = arranged(
+        [(0.0, "E4"), (0.07, "E4"), (0.59, "E4")], movement=comb_with({"damper_recovery_s": 0.55}), rulings=hands
+    )
+
+    assert left_out(arrangement) == {2: "damper-not-recovered"}
 
 
 def test_too_little_web_on_one_track_is_the_reason_where_wheel_and_damper_would_do() -> None:
@@ -222,6 +235,20 @@ def test_the_forbidden_stretch_between_two_tracks_has_a_direction(
     arrangement = arrange(score_of([(0.0, "G4"), (c4_s, "C4", 90), (d4_s, "D4")]), movement, asking(), spacing)
 
     assert sorted(left_out(arrangement).values()) == ([] if both else ["web"])
+
+
+@pytest.mark.parametrize(("d4_s", "reason"), [(10.3, "web"), (10.1, "wheel-still-stepping")])
+def test_a_nearer_opening_on_the_next_track_gives_the_reason(d4_s: float, reason: str) -> None:
+    # C4 at 10.5 s is 0.3 s after the C4 at 10.2 s, and 0.2 s or 0.4 s (0.0209, 0.0419 rad) after the
+    # D4. Anticlockwise a D4 0.02 to 0.3 rad before a C4 is forbidden; 0.1 s from the first C4 is not.
+    movement, spacing = one_sided("anticlockwise")
+    notes = [(0.0, "G4"), (10.2, "C4", 127), (10.5, "C4", 1), (d4_s, "D4", 127)]
+    hands = [{"note": note, "do": "must-sound"} for note in (1, 2)]
+    apart = replace(spacing, between=(replace(spacing.between[0], from_rad=0.02, to_rad=0.3),))
+
+    arrangement = arrange(score_of(notes), movement, asking(rulings=hands), apart)
+
+    assert left_out(arrangement) == {3: reason}
 
 
 @BOTH_WAYS

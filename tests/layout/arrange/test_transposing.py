@@ -1,5 +1,6 @@
 import time
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -111,6 +112,41 @@ def test_another_chooser_takes_the_place_of_ours_and_its_bound_is_reported() -> 
 
     # The chooser says 1500 and one pluck weighs 1000: the lower of the two true bounds holds.
     assert (best.kept, best.bound) == (0, 1000)
+
+
+def test_the_bound_holds_for_every_transposition_tried_and_not_only_the_last() -> None:
+    def none(asked: Asked, turning: Turning, spacing: Spacing) -> Chosen | Clash:
+        return Chosen(track_index=frozen_ints([-1] * len(asked.key)), bound=99_000)
+
+    best = best_transposed(plucks(["C4", "D4", "C#4"]), small_rules(), Transpose(), none)
+
+    # C and D are on the comb at 0 and E alone at +3; this chooser lets no transposition win.
+    assert (best.kept, best.bound) == (0, 2000)
+
+
+def test_the_bound_counts_repeats_at_exactly_their_least_time() -> None:
+    def none(asked: Asked, turning: Turning, spacing: Spacing) -> Chosen | Clash:
+        return Chosen(track_index=frozen_ints([-1] * len(asked.key)), bound=99_000)
+
+    # C4 repeats after 1 s: 0, 1 and 2 s are all in order.
+    exact = replace(plucks(["C4"] * 3), asked_s=frozen_floats([0.0, 1.0, 2.0]))
+
+    best = best_transposed(exact, small_rules(), Transpose(mode="fixed", semitones=0), none)
+
+    assert best.bound == 3000
+
+
+def test_of_two_tracks_the_chooser_bounds_twice_what_the_faster_can_hold() -> None:
+    asked_s, weight = frozen_floats([0.0, 0.1, 0.2, 0.3]), frozen_ints([1000, 3000, 2000, 2000])
+    close = replace(plucks(["E4"] * 4), asked_s=asked_s, weight=weight)
+    rules = small_rules()
+
+    chosen = choose(close.transposed(0, rules.comb.tracks_of_key), rules.turning, rules.spacing)
+
+    # One track holds one pluck in 0.3 s, the heaviest 3000; two tracks at most 6000, and here 5000.
+    assert isinstance(chosen, Chosen)
+    assert chosen.bound == 6000
+    assert [int(close.weight[pluck]) for pluck in np.flatnonzero(chosen.track_index >= 0)] == [3000, 2000]
 
 
 def crowded_score(count: int, length_s: float, pitches: tuple[int, int]) -> Score:
