@@ -59,6 +59,7 @@ def fingerprint_of(tune: bytes, movement: Movement, cutter: Cutter, settings: Se
         "engine": ENGINE_VERSION,
         "tune": hashlib.sha256(tune).hexdigest(),
         "movement": movement.model_dump(mode="json"),
+        "stated": {pointer: number.model_dump(mode="json") for pointer, number in movement.stated.items()},
         "cutter": cutter.model_dump(mode="json"),
         "settings": settings.model_dump(mode="json"),
     }

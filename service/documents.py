@@ -1,7 +1,5 @@
 """A movement or a cutter as it was asked for: by the id of one that ships, or as a document of one's own."""
 
-from collections.abc import Iterator
-from contextlib import contextmanager
 from dataclasses import dataclass
 
 from layout.documents import (
@@ -15,7 +13,6 @@ from layout.documents import (
     shipped_cutter_ids,
     shipped_movement,
 )
-from layout.errors import DocumentError, Problem
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -49,8 +46,7 @@ def movement_from(source: Source) -> Movement:
     """
     if isinstance(source, Shipped):
         return shipped_movement(source.id)
-    with _nested_sanely("movement"):
-        return read_movement(source.text)
+    return read_movement(source.text)
 
 
 def cutter_from(source: Source) -> Cutter:
@@ -62,8 +58,7 @@ def cutter_from(source: Source) -> Cutter:
     """
     if isinstance(source, Shipped):
         return shipped_cutter(source.id)
-    with _nested_sanely("cutter"):
-        return read_cutter(source.text)
+    return read_cutter(source.text)
 
 
 def settings_from_text(text: bytes) -> Settings:
@@ -72,18 +67,7 @@ def settings_from_text(text: bytes) -> Settings:
     Raises:
         DocumentError: The text is no valid settings document.
     """
-    with _nested_sanely("settings"):
-        return read_settings(text)
-
-
-@contextmanager
-def _nested_sanely(document: str) -> Iterator[None]:
-    """Turns running out of stack, on a document nested by the hundreds, into the error it is."""
-    try:
-        yield
-    except RecursionError as error:
-        message = "lists and objects are nested too deep; a document needs fewer than ten levels"
-        raise DocumentError(document=document, problems=(Problem(pointer="", message=message),)) from error
+    return read_settings(text)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -12,8 +12,7 @@ from layout.documents.reading import (
     Positive,
     Title,
     check_document,
-    parse_json,
-    take_apart,
+    read_json,
 )
 
 # Our layer names, each with the colour index (AutoCAD Color Index of the DXF reference) it has
@@ -31,6 +30,7 @@ LAYER_COLOURS = {
     "TRACKS": 9,
 }
 SAME_PLACE_MM = 1e-6  # mm; a nanometre, what rounding in a written document may leave
+WIDEST_WEB_MM = 50.0  # mm; a hundred times a usual web, keeps a document from being made slow
 MOST_TOOLS = 60  # tools; more than a press's magazine holds, keeps a document small
 
 
@@ -103,7 +103,7 @@ class Cutter(Part):
     kind: Literal["laser", "punch-press"]
     kerf_mm: NotNegative
     kerf_compensated: bool = False
-    min_web_mm: Positive
+    min_web_mm: Annotated[Positive, Field(le=WIDEST_WEB_MM)]
     min_slot_mm: Positive
     position_tolerance_mm: NotNegative
     angle_tolerance_deg: NotNegative = 0.0
@@ -151,5 +151,5 @@ def read_cutter(text: str | bytes) -> Cutter:
     Raises:
         DocumentError: Not JSON, or not a valid cutter; names every fault found.
     """
-    plain, _ = take_apart(parse_json(text, document="cutter"))
+    plain, _ = read_json(text, document="cutter")
     return check_document(Cutter, plain, document="cutter")

@@ -22,8 +22,7 @@ from layout.documents.reading import (
     Stated,
     Title,
     check_document,
-    parse_json,
-    take_apart,
+    read_json,
 )
 from layout.errors import DocumentError, Problem
 
@@ -188,6 +187,11 @@ class Movement(Part):
     teeth: Annotated[tuple[Tooth, ...], Field(min_length=1, max_length=MOST_TEETH)]
     _stated: dict[str, Stated] = PrivateAttr(default_factory=dict)
 
+    @property
+    def stated(self) -> Mapping[str, Stated]:
+        """What the document states of its numbers' worth, by the JSON pointer of the number."""
+        return self._stated
+
     def plus_minus(self, pointer: str) -> float:
         """How far the number at a JSON pointer may be off, in its own unit; 0 where not stated."""
         stated = self._stated.get(pointer)
@@ -318,7 +322,7 @@ def read_movement(text: str | bytes) -> Movement:
     Raises:
         DocumentError: Not JSON, or not a valid movement; names every fault found.
     """
-    plain, stated = take_apart(parse_json(text, document="movement"))
+    plain, stated = read_json(text, document="movement")
     if isinstance(plain, dict) and isinstance(plain.get("tracks"), dict):
         plain = {**plain, "tracks": _listed_tracks(plain["tracks"])}
     movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)

@@ -13,6 +13,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationEr
 
 from layout.errors import DocumentError, Problem
 
+MOST_LEVELS = 12  # lists and objects in each other; the deepest document has five
 Json = Any  # what json.loads gives: the one place where the type is not known yet
 
 
@@ -62,37 +63,41 @@ Title = Annotated[str, Field(min_length=1, max_length=120)]
 DocumentT = TypeVar("DocumentT", bound=Part)
 
 
-def parse_json(text: str | bytes, *, document: str) -> Json:
-    """The JSON value of a text.
+def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Json]]:
+    """The JSON value of a text with every stated number made plain, and what was stated.
+
+    Args:
+        text: The document as it is written.
+        document: Word for error messages.
+
+    Returns:
+        The plain value, and the stated objects by the JSON pointer of the number.
 
     Raises:
-        DocumentError: Not UTF-8 JSON, or it holds NaN or an infinity (RFC 8259 has neither).
+        DocumentError: Not UTF-8 JSON, nested too deep, or it holds NaN or an infinity (RFC 8259 has neither).
     """
 
     def refuse(name: str) -> Json:
         raise ValueError(f"{name} is not a JSON number")
 
     try:
-        return json.loads(text, parse_constant=refuse)
+        return _take_apart(json.loads(text, parse_constant=refuse), "", MOST_LEVELS)
     except (ValueError, RecursionError) as error:
         message = f"not JSON: {error}; write the document as one JSON object"
         raise DocumentError(document=document, problems=(Problem(pointer="", message=message),)) from error
 
 
-def take_apart(value: Json, pointer: str = "") -> tuple[Json, dict[str, Json]]:
-    """The value with every stated number replaced by its plain number, and what was replaced.
-
-    Returns:
-        The plain value, and the stated objects by the JSON pointer of the number.
-    """
+def _take_apart(value: Json, pointer: str, levels: int) -> tuple[Json, dict[str, Json]]:
+    if not levels:
+        raise ValueError(f"lists and objects are nested more than {MOST_LEVELS} deep")
     if isinstance(value, dict):
         if "value" in value and set(value) <= set(Stated.model_fields):
             return value["value"], {pointer: value}
-        pairs = [(str(key), *take_apart(item, f"{pointer}/{key}")) for key, item in value.items()]
+        pairs = [(key, *_take_apart(item, f"{pointer}/{key}", levels - 1)) for key, item in value.items()]
         plain: Json = {key: item for key, item, _ in pairs}
         return plain, {place: stated for *_, found in pairs for place, stated in found.items()}
     if isinstance(value, list):
-        parts = [take_apart(item, f"{pointer}/{place}") for place, item in enumerate(value)]
+        parts = [_take_apart(item, f"{pointer}/{place}", levels - 1) for place, item in enumerate(value)]
         return [item for item, _ in parts], {place: s for _, found in parts for place, s in found.items()}
     return value, {}
 

@@ -9,8 +9,7 @@ from layout.documents.reading import (
     Part,
     Positive,
     check_document,
-    parse_json,
-    take_apart,
+    read_json,
 )
 
 Channel = Annotated[int, Field(ge=1, le=16)]
@@ -108,5 +107,5 @@ def read_settings(text: str | bytes) -> Settings:
     Raises:
         DocumentError: Not JSON, or not valid settings; names every fault found.
     """
-    plain, _ = take_apart(parse_json(text, document="settings"))
+    plain, _ = read_json(text, document="settings")
     return check_document(Settings, plain, document="settings")

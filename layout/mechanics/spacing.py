@@ -6,7 +6,6 @@ only the metal counts. All are angles on the disc, so they hold at any speed.
 """
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Literal
 
@@ -15,15 +14,15 @@ import shapely
 from numpy.typing import NDArray
 
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
+MOST_TRACKS_APART = 6  # tracks; openings that reach past six neighbours are a movement no web can be kept on
 _HALVINGS = 50  # of an interval under one turn: ends below 1e-14 rad, the grain of a double
 _SCAN_STEPS = 400  # places tried over the stretch where two openings can pass each other
 
-WebAt = Callable[[FloatArray], FloatArray]
 Reason = Literal["wheel-still-stepping", "damper-not-recovered", "web"]
 
 
@@ -35,7 +34,8 @@ class Spacing:
         wheel_rad: Shape (tracks,). The star wheel's step: arc/(r·cos δ).
         damper_rad: Shape (tracks,). The damper's recovery at the fastest turn; 0 where undamped.
         web_rad: Shape (tracks,). Where the openings' web reaches the cutter's least.
-        between: Stretches of angle in which the openings of two tracks come too near; a pair may have several.
+        between: Stretches of angle in which the openings of two tracks come too near; a pair may have
+            several. Tracks more than MOST_TRACKS_APART from each other are not looked at.
     """
 
     wheel_rad: FloatArray
@@ -118,49 +118,61 @@ def _web_angles_rad(turning: Turning, pattern: Pattern, min_web_mm: float) -> Fl
 
 
 def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tuple[TooNear, ...]:
-    across_mm = float(np.ptp(pattern.core_points_mm[:, 1])) + 2 * pattern.core_round_mm
-    along_mm = float(np.ptp(pattern.core_points_mm[:, 0])) + 2 * pattern.core_round_mm
-    pairs: list[TooNear] = []
-    for inner in range(len(turning.radius_mm)):
-        for outer in range(inner + 1, len(turning.radius_mm)):
-            gap_mm = turning.radius_mm[outer] - turning.radius_mm[inner] - across_mm
-            # Straight openings on a circle lean outwards by their length squared over twice the radius.
-            if gap_mm - along_mm**2 / turning.radius_mm[inner] >= min_web_mm:
-                break
-            pairs += _too_near(turning, pattern, min_web_mm, (inner, outer))
-    return tuple(pairs)
-
-
-def _too_near(turning: Turning, pattern: Pattern, min_web_mm: float, pair: tuple[int, int]) -> list[TooNear]:
-    inner_mm, outer_mm = (float(turning.radius_mm[index]) for index in pair)
-    along_mm = float(np.ptp(pattern.core_points_mm[:, 0])) + 2 * pattern.core_round_mm + min_web_mm
-    reach_rad = min(2 * along_mm / inner_mm, math.pi)
-
-    def web_mm(apart_rad: FloatArray) -> FloatArray:
-        first = np.column_stack([np.full(len(apart_rad), inner_mm), np.zeros(len(apart_rad))])
-        second = np.column_stack([np.full(len(apart_rad), outer_mm), apart_rad])
-        return webs_mm(turning, pattern, first, second)
-
-    scan = np.linspace(-reach_rad, reach_rad, _SCAN_STEPS)
-    bad = np.flatnonzero(web_mm(scan) < min_web_mm)
-    # Corners may pass too near while the flat sides between them do not: each stretch counts for itself.
-    stretches = np.split(bad, np.flatnonzero(np.diff(bad) > 1) + 1) if len(bad) else []
-    return [
-        TooNear(
-            inner_index=pair[0],
-            outer_index=pair[1],
-            from_rad=_edge_rad(web_mm, min_web_mm, float(scan[max(run[0] - 1, 0)]), float(scan[run[0]])),
-            to_rad=_edge_rad(web_mm, min_web_mm, float(scan[min(run[-1] + 1, len(scan) - 1)]), float(scan[run[-1]])),
+    pairs = _near_pairs(turning, pattern, min_web_mm)
+    along_mm = _reach_mm(pattern, 0) + min_web_mm
+    ends: list[tuple[int, int, float, float]] = []
+    for inner, outer in pairs:
+        reach_rad = min(2 * along_mm / float(turning.radius_mm[inner]), math.pi)
+        scan = np.linspace(-reach_rad, reach_rad, _SCAN_STEPS)
+        webs = _pair_webs_mm(turning, pattern, np.full((len(scan), 2), (inner, outer)), scan)
+        bad = np.flatnonzero(webs < min_web_mm)
+        # Corners may pass too near while the flat sides between them do not: each stretch counts for itself.
+        for run in np.split(bad, np.flatnonzero(np.diff(bad) > 1) + 1) if len(bad) else []:
+            ends.append((inner, outer, scan[max(run[0] - 1, 0)], scan[run[0]]))
+            ends.append((inner, outer, scan[min(run[-1] + 1, len(scan) - 1)], scan[run[-1]]))
+    edges_rad = _edges_rad(turning, pattern, min_web_mm, ends)
+    return tuple(
+        TooNear(inner_index=ends[place][0], outer_index=ends[place][1], from_rad=low, to_rad=high)
+        for place, (low, high) in zip(
+            range(0, len(ends), 2), zip(edges_rad[::2], edges_rad[1::2], strict=True), strict=True
         )
-        for run in stretches
-    ]
+    )
 
 
-def _edge_rad(web_mm: WebAt, min_web_mm: float, good_rad: float, bad_rad: float) -> float:
+def _near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> list[tuple[int, int]]:
+    across_mm, along_mm = _reach_mm(pattern, 1), _reach_mm(pattern, 0)
+    pairs = []
+    for inner, inner_mm in enumerate(turning.radius_mm):
+        for outer in range(inner + 1, min(inner + MOST_TRACKS_APART + 1, len(turning.radius_mm))):
+            gap_mm = turning.radius_mm[outer] - inner_mm - across_mm
+            # Straight openings on a circle lean outwards by their length squared over twice the radius.
+            if gap_mm - along_mm**2 / inner_mm >= min_web_mm:
+                break
+            pairs.append((inner, outer))
+    return pairs
+
+
+def _reach_mm(pattern: Pattern, axis: int) -> float:
+    """Size of an opening along the travel (axis 0) or across it (axis 1)."""
+    return float(np.ptp(pattern.core_points_mm[:, axis])) + 2 * pattern.core_round_mm
+
+
+def _pair_webs_mm(turning: Turning, pattern: Pattern, pairs: IntArray, apart_rad: FloatArray) -> FloatArray:
+    first = np.column_stack([turning.radius_mm[pairs[:, 0]], np.zeros(len(apart_rad))])
+    second = np.column_stack([turning.radius_mm[pairs[:, 1]], apart_rad])
+    return webs_mm(turning, pattern, first, second)
+
+
+def _edges_rad(
+    turning: Turning, pattern: Pattern, min_web_mm: float, ends: list[tuple[int, int, float, float]]
+) -> list[float]:
+    """Where the web reaches its least, between a good and a bad angle of each end; the good side of it."""
+    if not ends:
+        return []
+    pairs = np.array([end[:2] for end in ends])
+    good_rad, bad_rad = np.array([end[2] for end in ends]), np.array([end[3] for end in ends])
     for _ in range(_HALVINGS):
         middle = (good_rad + bad_rad) / 2
-        if float(web_mm(np.array([middle]))[0]) >= min_web_mm:
-            good_rad = middle
-        else:
-            bad_rad = middle
-    return good_rad
+        enough = _pair_webs_mm(turning, pattern, pairs, middle) >= min_web_mm
+        good_rad, bad_rad = np.where(enough, middle, good_rad), np.where(enough, bad_rad, middle)
+    return [float(angle) for angle in good_rad]

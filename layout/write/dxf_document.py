@@ -57,6 +57,8 @@ def bytes_of(document: Drawing, comments: tuple[str, ...]) -> bytes:
     """
     document.commit_pending_changes()
     document.update_all()
+    # The library collects the classes it needs in a set, whose order is that of the hash seed.
+    document.classes.classes = dict(sorted(document.classes.classes.items()))
     _unstamp(document)
     text = io.StringIO()
     for comment in comments:

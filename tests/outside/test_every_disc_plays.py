@@ -24,6 +24,7 @@ from layout import walk
 from layout.documents import read_settings, shipped_cutter, shipped_movement
 from layout.write.laid_out import LaidOut
 from service.demo.compose import demo_tune
+from tests.layout.write.reading import read_dxf, read_svg, upside_down
 from tests.outside.gdal_drawing import area_of, layers_of, plucks_from_cut_geometry
 from tests.outside.pieces import PIECE_NAMES, public_domain_piece
 
@@ -119,6 +120,24 @@ def test_the_hit_table_lists_every_projection_once(pair: tuple[str, str]) -> Non
     listed = sorted((int(row["track"]), row["pitch"]) for row in rows)
     record = json.loads(files["layout.json"])
     assert listed == sorted((entry["track"], entry["pitch"]) for entry in record["projections"])
+
+
+@pytest.mark.parametrize("pair", [*PAIRS[::2], PAIRS[1]], ids="-".join)
+def test_the_picture_read_by_another_library_has_the_outlines_of_the_record(
+    pair: tuple[str, str], tmp_path: Path
+) -> None:
+    _, files = laid_out("demo", *pair)
+
+    shown = read_svg(files["disc.svg"])
+
+    drawn: dict[str, list[shapely.Geometry]] = {}
+    for layer, shape in read_dxf(files["record.dxf"], tmp_path):
+        drawn.setdefault(layer, []).append(upside_down(shape))
+    for layer in ("AFTER_FORMING", "SLITS", "SLOTS", "RIM"):
+        ours, theirs = drawn.get(layer, []), shown.get(layer.lower(), [])
+        assert len(ours) == len(theirs)
+        for one, other in zip(ours, theirs, strict=True):
+            assert shapely.hausdorff_distance(one, other) < 0.001
 
 
 @pytest.mark.parametrize("movement_id", MOVEMENTS)

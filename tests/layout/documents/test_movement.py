@@ -113,6 +113,11 @@ def test_text_that_is_not_json_is_refused(text: str | bytes) -> None:
         read_movement(text)
 
 
+def test_a_document_nested_too_deep_is_refused() -> None:
+    with pytest.raises(DocumentError, match="nested more than 12 deep"):
+        read_movement('{"disc": ' + "[" * 900 + "]" * 900 + "}")
+
+
 def test_json_that_is_no_object_is_refused() -> None:
     with pytest.raises(DocumentError, match="a JSON object is needed, got list"):
         read_movement("[]")

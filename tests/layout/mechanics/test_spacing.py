@@ -90,6 +90,13 @@ def test_two_tracks_are_too_near_exactly_within_the_stated_angles(
     assert inside == (web < LASER.min_web_mm) or abs(web - LASER.min_web_mm) < 5e-4
 
 
+def test_the_widest_web_a_cutter_may_ask_for_looks_at_six_neighbours_only() -> None:
+    here = spacing(MOSSBROOK, cutter_with({"min_web_mm": 50}))
+
+    apart = {pair.outer_index - pair.inner_index for pair in here.between}
+    assert apart == {1, 2, 3, 4, 5, 6}
+
+
 def test_the_reason_of_a_repeat_is_the_first_thing_that_forbids_it() -> None:
     movement = movement_with({"damper_recovery_s": 2.0})
     here = spacing(movement, cutter_with({"min_web_mm": 12.0}))
