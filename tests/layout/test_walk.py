@@ -1,0 +1,77 @@
+import pytest
+
+from layout import walk
+from layout.documents import read_settings
+from layout.errors import MidiReadError
+from service.demo.compose import demo_tune
+from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, movement_with
+
+DEFAULTS = read_settings("{}")
+
+
+def test_the_fingerprint_changes_with_every_input() -> None:
+    stated = movement_with({"star_wheel/axis_depth_mm": {"value": 3.75, "plus_minus": 0.04}})
+    inputs = [
+        (b"a", PLAIN, LASER, DEFAULTS),
+        (b"b", PLAIN, LASER, DEFAULTS),
+        (b"a", SHIPPED[0], LASER, DEFAULTS),
+        (b"a", PLAIN, PRESS, DEFAULTS),
+        (b"a", PLAIN, LASER, read_settings('{"title": "other"}')),
+        (b"a", stated, LASER, DEFAULTS),  # the same numbers, of another worth: other findings
+    ]
+
+    assert len({walk.fingerprint_of(*each) for each in inputs}) == len(inputs)
+
+
+def test_the_fingerprint_is_the_same_for_the_same_inputs() -> None:
+    first = walk.fingerprint_of(b"a", movement_with(), LASER, read_settings("{}"))
+
+    assert walk.fingerprint_of(b"a", movement_with(), LASER, read_settings('{"discs": 1}')) == first
+    assert len(first) == 16
+
+
+def test_the_title_is_the_settings_then_the_tunes_own() -> None:
+    own = walk.lay_out(demo_tune(), SHIPPED[0], LASER, DEFAULTS)
+    given = walk.lay_out(demo_tune(), SHIPPED[0], LASER, read_settings('{"title": "For the mill"}'))
+
+    assert own.title == "Turning Day at Wickenbeck"
+    assert given.title == "For the mill"
+
+
+def test_the_cutting_files_are_kept_back_while_an_error_stands() -> None:
+    too_long = walk.lay_out(demo_tune(), SHIPPED[2], LASER, DEFAULTS)
+
+    kept = walk.files_of(too_long)
+
+    assert not too_long.good_to_cut
+    assert set(kept) == {"record.dxf", "disc.svg", "layout.json"}
+
+
+def test_a_reason_gives_every_file_and_marks_it() -> None:
+    too_long = walk.lay_out(demo_tune(), SHIPPED[2], LASER, DEFAULTS)
+
+    given = walk.files_of(too_long, not_good="only to measure the fold")
+
+    assert set(given) == set(walk.FILES)
+    assert given["disc.dxf"].startswith(b"999\nNOT GOOD TO CUT: only to measure the fold\n")
+    assert b"NOT GOOD TO CUT" in given["disc.svg"]
+
+
+def test_a_reason_marks_nothing_on_a_disc_that_is_good_to_cut() -> None:
+    good = walk.lay_out(demo_tune(), SHIPPED[0], LASER, DEFAULTS)
+
+    assert walk.files_of(good, not_good="in any case") == walk.files_of(good)
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_same_inputs_give_the_same_bytes(movement: object) -> None:
+    first = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")  # type: ignore[arg-type] - parametrised
+
+    again = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")  # type: ignore[arg-type] - parametrised
+
+    assert again == first
+
+
+def test_a_tune_that_is_no_midi_file_is_refused() -> None:
+    with pytest.raises(MidiReadError, match="tune, byte 0"):
+        walk.lay_out(b"not a tune", PLAIN, LASER, DEFAULTS)
