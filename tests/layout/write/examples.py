@@ -59,7 +59,7 @@ EXAMPLE_DISCS = {
 
 
 def full_disc(movement: Movement, cutter: Cutter) -> Disc:
-    """A disc with a projection every 6 mm or so on every track, as in a dense tune; angles drawn by golden section."""
+    """A dense disc: a projection every 15 mm or so on every track, its angle from its moment as in a real one."""
     tracks = movement.tracks
     counts = [int(2 * math.pi * track.radius_mm / 6) for track in tracks]
     placed = [
@@ -68,7 +68,9 @@ def full_disc(movement: Movement, cutter: Cutter) -> Disc:
         for place in range(count)
         if (place * 7 + track.track * 3) % 5 < 2
     ]
-    return disc_of(movement, cutter, placed)
+    disc = disc_of(movement, cutter, placed)
+    sounds_s = disc.turning.sounds_s(disc.edge_angle_rad, disc.track_index)
+    return replace(disc, edge_angle_rad=frozen_floats(disc.turning.edge_angle_rad(sounds_s, disc.track_index)))
 
 
 def drawn_mm(disc: Disc, points_mm: FloatArray) -> FloatArray:
