@@ -28,6 +28,7 @@ def something_plays(arrangement: Arrangement, disc: Disc) -> list[Finding]:
 def music_fits_the_turn(arrangement: Arrangement, disc: Disc) -> list[Finding]:
     """An error where notes of the passage lie past the free part of the turn."""
     past = sum(note.reason == "past-the-turn" for note in arrangement.left_out)
+    falls = "note falls" if past == 1 else "notes fall"
     free_s = disc.turning.free_turn_s
     if not past:
         return []
@@ -37,12 +38,12 @@ def music_fits_the_turn(arrangement: Arrangement, disc: Disc) -> list[Finding]:
             level=Level.ERROR,
             message=(
                 f"The music lasts {arrangement.length_s:.2f} s from its first to its last note; one turn of "
-                f"{disc.movement.id} has {free_s:.2f} s for it, so {past} notes fall past the turn."
+                f"{disc.movement.id} has {free_s:.2f} s for it, so {past} {falls} past the turn."
             ),
             measured=arrangement.length_s,
             limit=free_s,
             unit="s",
             at=Place(sounds_s=free_s),
-            remedy='Choose a passage ("passage": {"from_s", "to_s"}), or play it faster ("speed": {"mode": "fit"}).',
+            remedy="Choose a passage of the tune, or the speed fit (settings: passage, speed).",
         )
     ]

@@ -20,6 +20,7 @@ from layout.mechanics import star_wheel
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 
 FULL_TURN_RAD = 2 * math.pi
+SNAP_RAD = 2.0**-44  # rad; 6e-14, a hundred times the rounding of an arcsine, a millionth of a nanometre on a disc
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -91,9 +92,14 @@ def turning_of(movement: Movement) -> Turning:
         radius_mm=radius_mm,
         engagement_arc_mm=frozen_floats(engagement for engagement, _ in arcs),
         release_arc_mm=release_arc_mm,
-        release_rad=frozen_floats(np.arcsin((offset_mm - direction * release_arc_mm) / radius_mm)),
-        row_rad=frozen_floats(np.arcsin(offset_mm / radius_mm)),
+        release_rad=_snapped_asin((offset_mm - direction * release_arc_mm) / radius_mm),
+        row_rad=_snapped_asin(offset_mm / radius_mm),
     )
+
+
+def _snapped_asin(sines: FloatArray) -> FloatArray:
+    # Processors and libraries round the last bit of an arcsine apart; layout.json must not follow them.
+    return frozen_floats(np.rint(np.arcsin(sines) / SNAP_RAD) * SNAP_RAD)
 
 
 def _arcs_mm(movement: Movement, track_index: int) -> tuple[float, float]:

@@ -97,14 +97,22 @@ def drawing_told(checked: CheckedDrawing, movement: Movement) -> dict[str, Any]:
 def _lines(drawing: Path, told: dict[str, Any], movement: Movement) -> list[str]:
     used = [track for track in told["tracks"] if track["pluck_count"]]
     lines = [f"{drawing} on {movement.id}, revision {movement.revision}: {movement.title}"]
-    lines.append(f"  plays       {len(told['plucks'])} plucks on {len(used)} of {len(told['tracks'])} tracks")
+    lines.append(f"  plays       {_counted(len(told['plucks']))} on {len(used)} of {len(told['tracks'])} tracks")
     if used:
-        lines.append(f"  first pluck {told['first_s']:.3f} s, last pluck {told['last_s']:.3f} s")
-        rows = [(f"  track {track['track']}", track["pitch"], f"{track['pluck_count']} plucks") for track in used]
+        lines.append(f"  first pluck {_seconds(told['first_s'])}, last pluck {_seconds(told['last_s'])}")
+        rows = [(f"  track {track['track']}", track["pitch"], _counted(track["pluck_count"])) for track in used]
         lines += aligned(rows)
     return lines
 
 
+def _seconds(value_s: float) -> str:
+    return f"{round(value_s, 3) + 0.0:.3f} s"  # a first pluck read back a nanosecond early is at 0, not at -0
+
+
+def _counted(count: int) -> str:
+    return f"{count} pluck" if count == 1 else f"{count} plucks"
+
+
 def _pluck_lines(told: dict[str, Any]) -> list[str]:
-    rows = [(f"  {pluck['sounds_s']:.3f} s", f"track {pluck['track']}", pluck["pitch"]) for pluck in told["plucks"]]
+    rows = [(f"  {_seconds(pluck['sounds_s'])}", f"track {pluck['track']}", pluck["pitch"]) for pluck in told["plucks"]]
     return aligned(rows)

@@ -162,8 +162,8 @@ def test_music_longer_than_the_turn_is_an_error_with_its_length() -> None:
 
     assert finding.code is Code.MUSIC_TOO_LONG
     assert finding.limit == pytest.approx(50.0)
-    assert "one turn of plain-3 has 50.00 s for it, so 1 notes fall past the turn" in finding.message
-    assert '"speed": {"mode": "fit"}' in finding.remedy
+    assert "one turn of plain-3 has 50.00 s for it, so 1 note falls past the turn." in finding.message
+    assert finding.remedy == "Choose a passage of the tune, or the speed fit (settings: passage, speed)."
 
 
 def test_music_that_fits_passes() -> None:
