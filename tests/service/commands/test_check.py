@@ -28,7 +28,7 @@ def test_a_sound_drawing_is_told_track_by_track(
         "  plays       3 plucks on 2 of 31 tracks",
         "  first pluck 0.250 s, last pluck 7.000 s",
         "  track 1  C4  2 plucks",
-        "  track 2  F4  1 plucks",
+        "  track 2  F4  1 pluck",
         "good to cut",
     ]
 
