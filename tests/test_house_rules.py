@@ -43,7 +43,6 @@ UNIT_SUFFIXES = (
 FIELDS_WITHOUT_UNIT = {
     "Shape.bulges": "a DXF bulge is a plain number, tan of a quarter of the arc's angle",
     "Outlines.bulges": "as in Shape",
-    "Pattern.fold_line": "a line, not a length: its two ends, in mm like all points of a pattern",
 }
 
 MACHINE_PATH = re.compile(r"(?<![\w.])/(?:home|Users|root|work|tmp)/\w|[A-Z]:\\Users|\.\./" + "shared")

@@ -42,9 +42,9 @@ def formed_projections(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
     if not len(order):
         return (tracks,)
     openings = _outlines("AFTER_FORMING", disc.pattern.opening, disc, order)
-    if disc.pattern.fold_line is None:
+    if disc.pattern.fold_line_mm is None:
         return tracks, openings
-    fold = Shape(points_mm=disc.pattern.fold_line, bulges=frozen_floats([0.0, 0.0]), closed=False)
+    fold = Shape(points_mm=disc.pattern.fold_line_mm, bulges=frozen_floats([0.0, 0.0]), closed=False)
     return tracks, _outlines("FOLDS", fold, disc, order), openings
 
 

@@ -52,7 +52,7 @@ class Pattern:
             grown by core_round_mm on all sides: so distances are exact, round ends included.
         core_round_mm: Radius of the growing; 0 for straight-sided openings.
         cut: What is cut, in SLITS (fold) or SLOTS (slot); None where a press hits.
-        fold_line: The line to fold on, (2, 2); None where nothing is folded.
+        fold_line_mm: The line to fold on, (2, 2); None where nothing is folded.
         blank_length_mm: Length of the flat tab from its tangent line; 0 where nothing is folded.
         body_behind_mm: How far standing metal reaches behind the working edge, along the travel.
         strike_u_mm: Where the tool strikes on the u axis; 0 on a laser.
@@ -64,7 +64,7 @@ class Pattern:
     core_points_mm: FloatArray
     core_round_mm: float
     cut: Shape | None
-    fold_line: FloatArray | None
+    fold_line_mm: FloatArray | None
     blank_length_mm: float
     body_behind_mm: float
     strike_u_mm: float
@@ -122,7 +122,7 @@ def _folded(movement: Movement, cutter: Cutter, fold: Fold) -> Pattern:
         core_points_mm=opening.points_mm,
         core_round_mm=0.0,
         cut=_fold_cut(tangent_mm, away, half_mm, blank_mm, cutter=cutter),
-        fold_line=frozen_floats(np.array([(fold_u_mm, -half_mm), (fold_u_mm, half_mm)])),
+        fold_line_mm=frozen_floats(np.array([(fold_u_mm, -half_mm), (fold_u_mm, half_mm)])),
         blank_length_mm=blank_mm,
         body_behind_mm=thickness_mm if behind else thickness_mm + radius_mm,
         strike_u_mm=0.0,
@@ -196,7 +196,7 @@ def _slot(length_mm: float, width_mm: float) -> Pattern:
         core_points_mm=frozen_floats(np.array([(half_mm, 0.0), (far_mm, 0.0)])),
         core_round_mm=half_mm,
         cut=outline,
-        fold_line=None,
+        fold_line_mm=None,
         blank_length_mm=0.0,
         body_behind_mm=0.0,
         strike_u_mm=0.0,
@@ -225,7 +225,7 @@ def _struck(movement: Movement, tool: Tool | None) -> Pattern:
         core_points_mm=opening.points_mm,
         core_round_mm=0.0,
         cut=None,
-        fold_line=None,
+        fold_line_mm=None,
         blank_length_mm=0.0,
         body_behind_mm=thickness_mm,
         strike_u_mm=strike_mm,

@@ -41,8 +41,8 @@ def test_a_folded_tab_has_its_working_edge_at_zero_and_its_depth(movement: Any, 
     pattern = pattern_of(movement, cutter)
     radius_mm, thickness_mm = 0.4, movement.disc.thickness_mm
     away = -1.0 if side == "behind" else 1.0
-    assert pattern.fold_line is not None
-    tangent_mm = float(pattern.fold_line[0, 0]) - away * bend_allowance_mm(radius_mm, thickness_mm) / 2
+    assert pattern.fold_line_mm is not None
+    tangent_mm = float(pattern.fold_line_mm[0, 0]) - away * bend_allowance_mm(radius_mm, thickness_mm) / 2
     free_end_mm = tangent_mm + away * pattern.blank_length_mm
 
     inner_mm, depth_mm = fold_flat_point(free_end_mm, tangent_mm, away, (radius_mm, thickness_mm))

@@ -107,8 +107,8 @@ def plan_by_hand(disc: Disc, *, title: str = "Example", not_good: str | None = N
         Circles(layer="TRACKS", centres_mm=np.zeros((len(radii_mm), 2)), radius_mm=radii_mm),
         Outlines(layer="AFTER_FORMING", points_mm=after_mm, bulges=bulges, closed=True),
     ]
-    if pattern.fold_line is not None:
-        lines_mm, straight = drawn_mm(disc, pattern.fold_line), frozen_floats([0.0, 0.0])
+    if pattern.fold_line_mm is not None:
+        lines_mm, straight = drawn_mm(disc, pattern.fold_line_mm), frozen_floats([0.0, 0.0])
         formed.append(Outlines(layer="FOLDS", points_mm=lines_mm, bulges=straight, closed=False))
     side = f"seen from the {disc.cutter.drawn_from}"
     return CutPlan(
