@@ -14,6 +14,7 @@ from layout.check.finding import Finding, stands
 from layout.cut import plan_cuts
 from layout.cut.plan import CutPlan
 from layout.documents import Cutter, Movement, Settings
+from layout.limits import limits_told
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.spacing import spacing_of
 from layout.mechanics.turning import turning_of
@@ -22,6 +23,7 @@ from layout.place.disc import Disc
 from layout.play import play
 from layout.play.plucks import Plucks
 from layout.read import read_score
+from layout.read.limits import LIMITS
 from layout.read_back import read_back
 from layout.version import ENGINE_VERSION
 from layout.write import write_dxf, write_hits, write_layout_json, write_svg
@@ -29,6 +31,8 @@ from layout.write.laid_out import LaidOut
 
 CUTTING_FILES = ("disc.dxf", "hits.csv")
 FILES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json")
+
+LIMITS_OF_READING = limits_told(LIMITS, prefix="tune_")
 
 _WRITERS: dict[str, Callable[[CutPlan, LaidOut], bytes]] = {
     "disc.dxf": lambda plan, laid_out: write_dxf(plan.disc, laid_out.disc.cutter),

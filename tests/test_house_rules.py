@@ -29,7 +29,7 @@ TYPE_MODULES = {
 }
 # Reading back must not lean on what was asked for or planned, only on what a disc is.
 READ_BACK_MAY_IMPORT = {"layout.place.disc", "layout.play.plucks", "layout.check.finding"}
-OPEN_TO_EVERY_STAGE = ("layout.documents", "layout.mechanics", "layout.errors", "layout.version")
+OPEN_TO_EVERY_STAGE = ("layout.documents", "layout.mechanics", "layout.errors", "layout.limits", "layout.version")
 THE_WALK = "layout.walk"
 
 MOST_MODULE_LINES = 400

@@ -2,28 +2,26 @@
 
 from dataclasses import dataclass
 
+from layout.limits import limit
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class ReadLimits:
-    """How large a tune may be.
+    """How large a tune may be."""
 
-    Attributes:
-        file_bytes: Largest file, in bytes. 2 MiB is also the service's upload limit; 50,000 notes
-            written in full (two events of four bytes each) take 0.4 MB.
-        notes: Most notes outside the percussion channel, a count. One turn of the largest disc holds
-            a few thousand; this leaves room to choose a passage.
-        last_onset_s: Latest onset, in seconds: 4 h, far more than one turn plays, and a bound on
-            what a few tempo or delta-time bytes can ask for.
-        title_characters: Longest title kept, in characters: one line of the MARKS layer.
-        quantity_bytes: Longest variable-length quantity, in bytes. Standard MIDI File 1.0: the
-            largest number allowed is 0FFFFFFF, so that it fits four bytes.
-    """
-
-    file_bytes: int = 2_097_152
-    notes: int = 50_000
-    last_onset_s: int = 4 * 60 * 60
-    title_characters: int = 80
-    quantity_bytes: int = 4
+    file_bytes: int = limit(
+        2 * 1024 * 1024, "bytes", "largest tune; 50,000 notes written in full, eight bytes each, take a fifth of it"
+    )
+    notes: int = limit(
+        50_000, "notes", "most notes outside the percussion channel; one turn holds a few thousand at most"
+    )
+    last_onset_s: int = limit(
+        4 * 60 * 60, "seconds", "latest onset; far later than one turn plays, so that a passage can be chosen"
+    )
+    title_characters: int = limit(80, "characters", "longest title kept of a tune: one line of lettering on the disc")
+    quantity_bytes: int = limit(
+        4, "bytes", "longest variable-length quantity: Standard MIDI File 1.0 allows no number above 0FFFFFFF"
+    )
 
 
 LIMITS = ReadLimits()
