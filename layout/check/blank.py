@@ -18,37 +18,46 @@ from layout.place.disc import Disc
 
 def tracks_are_on_the_disc(disc: Disc) -> list[Finding]:
     """An error for every used track whose projections, by their width, do not lie wholly on the disc."""
-    blank, half_mm = disc.movement.disc, disc.movement.projection.width_mm / 2
-    rim_mm, hole_mm = blank.outer_diameter_mm / 2, blank.centre_hole_mm / 2
-    findings: list[Finding] = []
-    for index in used_tracks(disc):
-        radius_mm = float(disc.turning.radius_mm[index])
-        beyond = radius_mm + half_mm > rim_mm
-        if not beyond and radius_mm - half_mm >= hole_mm:
-            continue
-        edge_mm, limit_mm = (radius_mm + half_mm, rim_mm) if beyond else (radius_mm - half_mm, hole_mm)
-        findings.append(
-            Finding(
-                code=Code.TRACK_OFF_DISC,
-                level=Level.ERROR,
-                message=(
-                    f"Projections on track {index + 1} reach to {edge_mm:.3f} mm from the centre; "
-                    f"the disc's {'rim' if beyond else 'centre hole'} is at {limit_mm:.3f} mm."
-                ),
-                measured=edge_mm,
-                limit=limit_mm,
-                unit="mm",
-                at=Place(tracks=(index + 1,), radius_mm=radius_mm),
-                remedy="Correct the track's radius_mm or the disc's diameter in the movement document.",
-            )
+    return [
+        Finding(
+            code=Code.TRACK_OFF_DISC,
+            level=Level.ERROR,
+            message=(
+                f"Projections on track {index + 1} reach to {reach_mm:.3f} mm from the centre; "
+                f"the disc's {edge} is at {limit_mm:.3f} mm."
+            ),
+            measured=reach_mm,
+            limit=limit_mm,
+            unit="mm",
+            at=Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index])),
+            remedy="Correct the track's radius_mm or the disc's diameter in the movement document.",
         )
-    return findings
+        for index in used_tracks(disc)
+        for edge, reach_mm, limit_mm in _off_disc(disc, index)
+    ]
+
+
+def _off_disc(disc: Disc, index: int) -> list[tuple[str, float, float]]:
+    """Which edge of the disc a track's projections cross, how far they reach, and where the edge is; mostly none."""
+    blank, half_mm = disc.movement.disc, disc.movement.projection.width_mm / 2
+    inner_mm, outer_mm = disc.turning.radius_mm[index] + np.array([-half_mm, half_mm])
+    crossed = []
+    if outer_mm > blank.outer_diameter_mm / 2:
+        crossed.append(("rim", float(outer_mm), blank.outer_diameter_mm / 2))
+    if inner_mm < blank.centre_hole_mm / 2:
+        crossed.append(("centre hole", float(inner_mm), blank.centre_hole_mm / 2))
+    return crossed
 
 
 def webs_to_the_blank_hold(disc: Disc) -> list[Finding]:
-    """An error where an opening leaves less than the least web to rim, centre hole or a feature."""
+    """An error where an opening leaves less than the least web to rim, centre hole or a feature.
+
+    A track whose projections are off the disc leaves no web to speak of; another check says so.
+    """
     findings: list[Finding] = []
     for index in used_tracks(disc):
+        if _off_disc(disc, index):
+            continue
         nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
         rim_mm, hole_mm = disc.movement.disc.outer_diameter_mm / 2, disc.movement.disc.centre_hole_mm / 2
         findings += _web_to(disc, index, Code.WEB_TO_RIM, "the rim", rim_mm - farthest_mm)
@@ -68,8 +77,9 @@ def keep_outs_are_clear(disc: Disc) -> list[Finding]:
                 says=(
                     f"Openings on track {index + 1}, from {nearest_mm:.3f} to {farthest_mm:.3f} mm, come within "
                     f"{clear_mm:.3f} mm of the ring from {ring.from_radius_mm:.3f} to {ring.to_radius_mm:.3f} mm that "
-                    f"must stay whole: {ring.why}."
+                    f"must stay whole ({ring.why})"
                 ),
+                so="they cut into it",
                 measured=clear_mm,
                 limit=0.0,
                 unit="mm",
@@ -96,8 +106,9 @@ def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> lis
     condition = Condition(
         code=code,
         says=(
-            f"Openings on track {index + 1} leave {web_mm:.3f} mm to {what}; {disc.cutter.id} needs {limit_mm:.3f} mm."
+            f"Openings on track {index + 1} leave {web_mm:.3f} mm to {what}; {disc.cutter.id} needs {limit_mm:.3f} mm"
         ),
+        so="the metal between would tear or burn away",
         measured=web_mm,
         limit=limit_mm,
         unit="mm",

@@ -21,7 +21,8 @@ class Condition:
 
     Attributes:
         code: Of the finding where it fails.
-        says: The sentence of that finding.
+        says: What was found and what it is held against: true whether the condition holds or not; no full stop.
+        so: What follows where it fails.
         measured: The number found.
         limit: The number it is held against.
         unit: Of both.
@@ -33,6 +34,7 @@ class Condition:
 
     code: Code
     says: str
+    so: str
     measured: float
     limit: float
     unit: str
@@ -48,12 +50,14 @@ def judged(condition: Condition, movement: Movement) -> list[Finding]:
     fails = condition.margin < 0
     if not fails and condition.margin >= unsure:
         return []
-    says = condition.says
-    if abs(condition.margin) < unsure:
-        says += (
-            f" The margin of {condition.margin:.3f} {condition.unit} is smaller than the ±{unsure:.3f} "
-            f"{condition.unit} of the numbers it stands on."
+    worth = f"less than the ±{unsure:.3f} {condition.unit} of the numbers it stands on"
+    by = f"by {abs(condition.margin):.3f} {condition.unit}"
+    if fails:
+        says = f"{condition.says}: {condition.so}." + (
+            f" It fails {by}, {worth}." if -condition.margin < unsure else ""
         )
+    else:
+        says = f"{condition.says}. It holds {by}, {worth}."
     return [
         Finding(
             code=condition.code if fails else Code.MARGIN_UNSURE,

@@ -10,7 +10,7 @@ def something_plays(arrangement: Arrangement, disc: Disc) -> list[Finding]:
     if len(arrangement.track_index):
         return []
     reasons = sorted({note.reason for note in arrangement.left_out})
-    why = f"every note is left out ({', '.join(reasons)})" if reasons else "the tune holds no notes"
+    why = f"every note is left out ({', '.join(reasons)})" if reasons else "the tune holds no notes but percussion"
     return [
         Finding(
             code=Code.NOTHING_TO_PLAY,
@@ -32,6 +32,7 @@ def music_fits_the_turn(arrangement: Arrangement, disc: Disc) -> list[Finding]:
     free_s = disc.turning.free_turn_s
     if not past:
         return []
+    fits_at = arrangement.speed_factor * arrangement.length_s / free_s
     return [
         Finding(
             code=Code.MUSIC_TOO_LONG,
@@ -44,6 +45,9 @@ def music_fits_the_turn(arrangement: Arrangement, disc: Disc) -> list[Finding]:
             limit=free_s,
             unit="s",
             at=Place(sounds_s=free_s),
-            remedy="Choose a passage of the tune, or the speed fit (settings: passage, speed).",
+            remedy=(
+                "Choose a passage of the tune, or let it play faster: it fits the turn at "
+                f"{fits_at:.3f} times as written (settings: passage, speed)."
+            ),
         )
     ]

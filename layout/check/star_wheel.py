@@ -33,7 +33,8 @@ def star_clears_the_disc(disc: Disc) -> list[Finding]:
     gap_mm, flatness_mm = sizes[0].axis_depth_mm - sizes[0].tip_radius_mm, disc.movement.disc.flatness_mm
     condition = Condition(
         code=Code.STAR_HITS_DISC,
-        says=f"The star's tips come {gap_mm:.3f} mm under the disc, which may be out of flat by {flatness_mm:.3f} mm.",
+        says=f"The star's tips come {gap_mm:.3f} mm under the disc, which may be out of flat by {flatness_mm:.3f} mm",
+        so="the star may touch the sheet between projections",
         measured=gap_mm,
         limit=flatness_mm,
         unit="mm",
@@ -56,8 +57,9 @@ def star_is_reached(disc: Disc) -> list[Finding]:
         code=Code.STAR_NOT_REACHED,
         says=(
             f"A projection {low_mm:.3f} mm deep, the least of its band, ends {gap_mm:.3f} mm from the star's axis; "
-            f"the tips reach only {wheel.tip_radius_mm:.3f} mm."
+            f"the tips reach {wheel.tip_radius_mm:.3f} mm"
         ),
+        so="it passes without turning the star",
         measured=gap_mm,
         limit=wheel.tip_radius_mm,
         unit="mm",
@@ -82,9 +84,10 @@ def step_is_one_point(disc: Disc) -> list[Finding]:
     short = Condition(
         code=Code.STEP_TOO_SHORT,
         says=(
-            f"At a depth of {low_mm:.3f} mm the tip is let go at {least_deg:.2f}°, before half a step "
-            f"({half_deg:.2f}°): the star does not come round to the next point."
+            f"At a depth of {low_mm:.3f} mm, the least of its band, the tip is let go at {least_deg:.2f}°; "
+            f"half a step is {half_deg:.2f}°"
         ),
+        so="the star does not come round to the next point",
         measured=least_deg,
         limit=half_deg,
         unit="deg",
@@ -96,9 +99,10 @@ def step_is_one_point(disc: Disc) -> list[Finding]:
     long = Condition(
         code=Code.STEP_TOO_LONG,
         says=(
-            f"At a depth of {high_mm:.3f} mm the tip is held until {most_deg:.2f}°, past a whole step "
-            f"({2 * half_deg:.2f}°): the star is turned by two points in one pass."
+            f"At a depth of {high_mm:.3f} mm, the most of its band, the tip is held until {most_deg:.2f}°; "
+            f"a whole step is {2 * half_deg:.2f}°"
         ),
+        so="the star is turned by two points in one pass",
         measured=most_deg,
         limit=2 * half_deg,
         unit="deg",
@@ -127,8 +131,9 @@ def tip_clears_the_bend(disc: Disc) -> list[Finding]:
         code=Code.TIP_IN_BEND,
         says=(
             f"The star's tips come to {gap_mm:.3f} mm under the disc at its most out of flat; "
-            f"the fold is round up to {fold.inside_radius_mm:.3f} mm, so the tips ride in the bend."
+            f"the fold is round up to {fold.inside_radius_mm:.3f} mm"
         ),
+        so="the tips ride in the bend",
         measured=gap_mm,
         limit=fold.inside_radius_mm,
         unit="mm",
@@ -151,8 +156,9 @@ def depth_stays_off_the_root(disc: Disc) -> list[Finding]:
         code=Code.DEPTH_AT_ROOT,
         says=(
             f"A projection {high_mm:.3f} mm deep, the most of its band, comes to {gap_mm:.3f} mm from the star's "
-            f"axis; the star is solid up to {wheel.root_radius_mm:.3f} mm."
+            f"axis; the star is solid up to {wheel.root_radius_mm:.3f} mm"
         ),
+        so="it runs onto the star's body",
         measured=gap_mm,
         limit=wheel.root_radius_mm,
         unit="mm",
@@ -180,9 +186,10 @@ def tooth_is_released(disc: Disc) -> list[Finding]:
     condition = Condition(
         code=Code.TOOTH_LEFT_HANGING,
         says=(
-            f"The tooth is released at {release_deg:.2f}° of the star wheel; over the depth band the tip is surely "
-            f"pushed only from {earliest_deg:.2f}° to {least_deg:.2f}°, so the tooth may be lifted and left hanging."
+            f"The tooth is released at {release_deg:.2f}° of the star wheel; over the whole depth band the tip is "
+            f"pushed from {earliest_deg:.2f}° to {least_deg:.2f}°"
         ),
+        so="the tooth may be lifted and left hanging",
         measured=release_deg,
         limit=limit_deg,
         unit="deg",
@@ -208,8 +215,9 @@ def neighbours_are_not_fouled(disc: Disc) -> list[Finding]:
             code=Code.NEIGHBOUR_FOULED,
             says=(
                 f"A projection on track {index + 1} reaches {reach_mm:.3f} mm to the side; "
-                f"the neighbouring star wheel begins at {room_mm:.3f} mm."
+                f"the neighbouring star wheel begins at {room_mm:.3f} mm"
             ),
+            so="it may turn the neighbour too",
             measured=reach_mm,
             limit=room_mm,
             unit="mm",
@@ -233,8 +241,9 @@ def own_star_is_met(disc: Disc) -> list[Finding]:
             code=Code.OWN_STAR_MISSED,
             says=(
                 f"A projection on track {index + 1} reaches {half_mm:.3f} mm to each side; to meet its own star "
-                f"wheel over its whole thickness in every case it needs {needed_mm:.3f} mm."
+                f"wheel over its whole thickness in every case it needs {needed_mm:.3f} mm"
             ),
+            so="it may slip past its own star",
             measured=half_mm,
             limit=needed_mm,
             unit="mm",

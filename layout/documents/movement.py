@@ -326,12 +326,21 @@ def read_movement(text: str | bytes) -> Movement:
     if isinstance(plain, dict) and isinstance(plain.get("tracks"), dict):
         plain = {**plain, "tracks": _listed_tracks(plain["tracks"])}
     movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)
-    worth = {
-        pointer: check_document(Stated, value, document=f"movement, number at {pointer}")
-        for pointer, value in stated.items()
-    }
-    movement._stated.update(worth)
+    movement._stated.update({pointer: _checked_worth(pointer, value) for pointer, value in stated.items()})
     return movement
+
+
+def _checked_worth(pointer: str, value: Json) -> Stated:
+    try:
+        return check_document(Stated, value, document="movement")
+    except DocumentError as error:
+        raise _moved(error, pointer) from error
+
+
+def _moved(error: DocumentError, pointer: str) -> DocumentError:
+    """The error of a part, with its places as they are in the whole document."""
+    problems = tuple(Problem(pointer=f"{pointer}{p.pointer}", message=p.message) for p in error.problems)
+    return DocumentError(document=error.document, problems=problems)
 
 
 def _listed_tracks(spread: Json) -> list[Json]:
@@ -343,8 +352,7 @@ def _listed_tracks(spread: Json) -> list[Json]:
     try:
         row = check_document(TrackRange, spread, document="movement")
     except DocumentError as error:
-        moved = tuple(Problem(pointer=f"/tracks{p.pointer}", message=p.message) for p in error.problems)
-        raise DocumentError(document="movement", problems=moved) from error
+        raise _moved(error, "/tracks") from error
     step_mm = (row.last_radius_mm - row.first_radius_mm) / max(row.count - 1, 1)
     # Rounded to a nanometre: 36 + 7 * 2.62 would otherwise print as 54.339999999999996.
     return [

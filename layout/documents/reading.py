@@ -6,6 +6,7 @@ number is worth is kept beside it, under the number's JSON pointer.
 """
 
 import json
+import re
 from collections.abc import Mapping
 from typing import Annotated, Any, Literal, TypeVar
 
@@ -14,6 +15,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationEr
 from layout.errors import DocumentError, Problem
 
 MOST_LEVELS = 12  # lists and objects in each other; the deepest document has five
+_TOO_DEEP = f"lists and objects are nested more than {MOST_LEVELS} deep; a document needs fewer"
 Json = Any  # what json.loads gives: the one place where the type is not known yet
 
 
@@ -31,9 +33,29 @@ class Stated(Part):
     basis: Literal["measured", "calculated", "assumed"] = "measured"
 
 
-def _refuse_bool_and_text(value: object) -> object:
-    if isinstance(value, bool | str):
-        raise ValueError(f"a number is needed, got {value!r}")
+_JSON_NAMES = {dict: "an object", list: "a list", str: "text", bool: "true or false", type(None): "null"}
+
+
+def _named(value: object) -> str:
+    """What a JSON value is, in JSON's words; a number or a short text as it stands."""
+    if isinstance(value, str) or not isinstance(value, tuple(_JSON_NAMES)):
+        return repr(value)
+    return json.dumps(value) if isinstance(value, bool) else _JSON_NAMES[type(value)]
+
+
+def _number(value: object) -> object:
+    if isinstance(value, Mapping) and set(value) <= set(Stated.model_fields):
+        raise ValueError('a number stated with its worth needs "value"')
+    if isinstance(value, bool) or not isinstance(value, int | float):
+        raise ValueError(f"a number is needed, got {_named(value)}")
+    return value
+
+
+def _identifier(value: object) -> object:
+    if not isinstance(value, str) or re.fullmatch("[a-z][a-z0-9-]{0,63}", value) is None:
+        raise ValueError(
+            f"an id is a small letter followed by at most 63 small letters, digits and hyphens; got {_named(value)}"
+        )
     return value
 
 
@@ -54,10 +76,10 @@ _NUMBER_SCHEMA = {
 }
 _TAKES_STATED = WithJsonSchema(_NUMBER_SCHEMA, mode="validation")
 
-Number = Annotated[float, BeforeValidator(_refuse_bool_and_text), _TAKES_STATED]
-Positive = Annotated[float, BeforeValidator(_refuse_bool_and_text), Field(gt=0), _TAKES_STATED]
-NotNegative = Annotated[float, BeforeValidator(_refuse_bool_and_text), Field(ge=0), _TAKES_STATED]
-Identifier = Annotated[str, Field(pattern=r"^[a-z][a-z0-9-]{0,63}$")]
+Number = Annotated[float, BeforeValidator(_number), _TAKES_STATED]
+Positive = Annotated[float, BeforeValidator(_number), Field(gt=0), _TAKES_STATED]
+NotNegative = Annotated[float, BeforeValidator(_number), Field(ge=0), _TAKES_STATED]
+Identifier = Annotated[str, BeforeValidator(_identifier), Field(pattern=r"^[a-z][a-z0-9-]{0,63}$")]
 Title = Annotated[str, Field(min_length=1, max_length=120)]
 
 DocumentT = TypeVar("DocumentT", bound=Part)
@@ -81,15 +103,27 @@ def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Json
         raise ValueError(f"{name} is not a JSON number")
 
     try:
-        return _take_apart(json.loads(text, parse_constant=refuse), "", MOST_LEVELS)
-    except (ValueError, RecursionError) as error:
+        value = json.loads(text, parse_constant=refuse, object_pairs_hook=_without_doubles)
+        return _take_apart(value, "", MOST_LEVELS)
+    except RecursionError as error:
+        raise DocumentError(document=document, problems=(Problem(pointer="", message=_TOO_DEEP),)) from error
+    except ValueError as error:
         message = f"not JSON: {error}; write the document as one JSON object"
         raise DocumentError(document=document, problems=(Problem(pointer="", message=message),)) from error
 
 
+def _without_doubles(pairs: list[tuple[str, Json]]) -> dict[str, Json]:
+    found = dict(pairs)
+    if len(found) < len(pairs):
+        names = [name for name, _ in pairs]
+        double = next(name for name in names if names.count(name) > 1)
+        raise ValueError(f"the field {double!r} is given twice")
+    return found
+
+
 def _take_apart(value: Json, pointer: str, levels: int) -> tuple[Json, dict[str, Json]]:
     if not levels:
-        raise ValueError(f"lists and objects are nested more than {MOST_LEVELS} deep")
+        raise ValueError(_TOO_DEEP)
     if isinstance(value, dict):
         if "value" in value and set(value) <= set(Stated.model_fields):
             return value["value"], {pointer: value}
@@ -117,7 +151,7 @@ def check_document(
         DocumentError: With one problem per fault, each with its JSON pointer.
     """
     if not isinstance(value, Mapping):
-        message = f"a JSON object is needed, got {type(value).__name__}"
+        message = f"a JSON object is needed, got {_named(value)}"
         raise DocumentError(document=document, problems=(Problem(pointer="", message=message),))
     try:
         return model.model_validate(value)

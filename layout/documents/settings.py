@@ -1,8 +1,9 @@
 """The settings document: what the maker asks of one disc. Every field is optional."""
 
+from collections.abc import Callable
 from typing import Annotated, Literal, Self
 
-from pydantic import Field, model_validator
+from pydantic import BeforeValidator, Field, model_validator
 
 from layout.documents.reading import (
     NotNegative,
@@ -15,6 +16,15 @@ from layout.documents.reading import (
 Channel = Annotated[int, Field(ge=1, le=16)]
 MOST_RULINGS = 50_000  # rulings; one for every note a tune may hold
 WIDEST_TRANSPOSITION = 48  # semitones; four octaves, more moves any tune off any comb
+
+
+def _not_yet(what: str, only: object) -> Callable[[object], object]:
+    def check(value: object) -> object:
+        if value != only or isinstance(value, bool):
+            raise ValueError(f"{what} are not offered yet; leave it out or at {only!r}, got {value!r}")
+        return value
+
+    return check
 
 
 class Passage(Part):
@@ -93,12 +103,12 @@ class Settings(Part):
     passage: Passage = Passage()
     speed: Speed = Speed()
     transpose: Transpose = Transpose()
-    octave_moves: Literal["none"] = "none"
+    octave_moves: Annotated[Literal["none"], BeforeValidator(_not_yet("octave moves", "none"))] = "none"
     largest_nudge_ms: NotNegative = 20.0
     channels: Channels = Channels()
     rulings: Annotated[tuple[Ruling, ...], Field(max_length=MOST_RULINGS)] = ()
     sequence: Annotated[int, Field(ge=1, le=65535)] = 1
-    discs: Literal[1] = 1
+    discs: Annotated[Literal[1], BeforeValidator(_not_yet("several discs", 1))] = 1
 
 
 def read_settings(text: str | bytes) -> Settings:

@@ -4,6 +4,7 @@ import argparse
 import textwrap
 from collections.abc import Callable
 from dataclasses import dataclass
+from pathlib import Path
 from typing import NoReturn
 
 from service.commands.errors import CommandError
@@ -76,6 +77,17 @@ def add_movement_and_cutter(parser: argparse.ArgumentParser) -> None:
         help="the machine that cuts it: an id that `discwright cutters` lists, or a cutter document (JSON); "
         "by default fibre-laser",
     )
+
+
+def folder(text: str) -> Path:
+    """The folder an argument names.
+
+    Raises:
+        ArgumentTypeError: The argument is empty, which would be the current folder by accident.
+    """
+    if not text.strip():
+        raise argparse.ArgumentTypeError("is empty; give a folder, or . for the current one")
+    return Path(text)
 
 
 def add_json(parser: argparse.ArgumentParser) -> None:

@@ -3,7 +3,7 @@
 import argparse
 
 from service.catalogue import document_told
-from service.commands.arguments import OneLineParser, Tools
+from service.commands.arguments import OneLineParser, Tools, add_json
 from service.commands.errors import GOOD
 from service.commands.files_in import read_named_movement
 from service.commands.output import say_json
@@ -19,6 +19,7 @@ def add_arguments(parser: OneLineParser) -> None:
     parser.add_argument(
         "movement", metavar="ID_OR_FILE", help="an id that `discwright movements` lists, or a movement document"
     )
+    add_json(parser)  # what it prints is JSON in any case
 
 
 def run(asked: argparse.Namespace, tools: Tools) -> int:

@@ -8,7 +8,7 @@ from typing import Any
 
 from layout.documents import Cutter, Movement
 from layout.walk import CUTTING_FILES, FILES
-from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter
+from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter, folder
 from service.commands.errors import ERROR_STANDS, GOOD, CommandError
 from service.commands.files_in import read_file, read_named_cutter, read_named_movement, read_named_settings
 from service.commands.files_out import write_files
@@ -34,7 +34,7 @@ def add_arguments(parser: OneLineParser) -> None:
     parser.add_argument(
         "--settings", type=Path, metavar="FILE", help="a settings document (JSON): passage, speed, transposition, …"
     )
-    parser.add_argument("--out", type=Path, required=True, metavar="DIR", help="the folder for the files")
+    parser.add_argument("--out", type=folder, required=True, metavar="DIR", help="the folder for the files")
     parser.add_argument(
         "--despite-findings",
         metavar="REASON",

@@ -142,7 +142,10 @@ def test_a_failing_condition_says_when_its_numbers_are_worth_less_than_its_margi
     [finding] = star_clears_the_disc(disc_of(movement_with({"star_wheel/axis_depth_mm": stated}), PLUCKS))
 
     assert finding.level is Level.ERROR
-    assert "The margin of -0.050 mm is smaller than the ±0.080 mm of the numbers it stands on." in finding.message
+    assert finding.message == (
+        "The star's tips come 0.050 mm under the disc, which may be out of flat by 0.100 mm: the star may touch the "
+        "sheet between projections. It fails by 0.050 mm, less than the ±0.080 mm of the numbers it stands on."
+    )
 
 
 def test_a_condition_that_holds_by_less_than_its_numbers_are_worth_is_a_warning() -> None:
@@ -152,7 +155,10 @@ def test_a_condition_that_holds_by_less_than_its_numbers_are_worth_is_a_warning(
 
     assert finding.code is Code.MARGIN_UNSURE
     assert finding.level is Level.WARNING
-    assert "The margin of 0.050 mm is smaller than the ±0.060 mm" in finding.message
+    assert finding.message == (
+        "The star's tips come 0.150 mm under the disc, which may be out of flat by 0.100 mm. "
+        "It holds by 0.050 mm, less than the ±0.060 mm of the numbers it stands on."
+    )
     assert finding.remedy.startswith("Measure again to be sure")
 
 

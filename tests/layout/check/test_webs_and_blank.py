@@ -194,7 +194,7 @@ def test_an_opening_in_a_ring_that_must_stay_whole_is_found() -> None:
     assert finding.code is Code.IN_KEEP_OUT
     # the opening begins at 50 - 1.02 = 48.98: 0.22 inside the ring
     assert finding.measured == pytest.approx(-0.22, abs=1e-6)
-    assert "must stay whole: pressed by a roller" in finding.message
+    assert "must stay whole (pressed by a roller): they cut into it." in finding.message
 
 
 def test_an_opening_at_the_edge_of_a_ring_passes() -> None:
@@ -223,6 +223,12 @@ def test_a_track_off_the_disc_is_found(changes: dict[str, Any], message: str) ->
 
     assert finding.code is Code.TRACK_OFF_DISC
     assert message in finding.message
+
+
+def test_a_track_off_the_disc_is_not_told_a_second_time_as_a_web() -> None:
+    disc = disc_of(movement_with({"disc/outer_diameter_mm": 180}), [(1, 10.0), (3, 10.0)])
+
+    assert webs_to_the_blank_hold(disc) == []
 
 
 def test_tracks_on_the_disc_pass() -> None:

@@ -54,7 +54,10 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
     ("changes", "message"),
     [
         ({"format": "discwright-movement/2"}, r"/format: Input should be 'discwright-movement/1'"),
-        ({"id": "Fern Hollow"}, r"/id: String should match pattern .*got 'Fern Hollow'"),
+        ({"id": "Fern Hollow"}, r"/id: an id is a small letter followed by .*; got 'Fern Hollow'"),
+        ({"revolution_s": None, "disc": []}, r"/disc: "),
+        ({"damper_arc_mm": [1]}, r"/damper_arc_mm: a number is needed, got a list"),
+        ({"damper_arc_mm": {"plus_minus": 1}}, r'/damper_arc_mm: a number stated with its worth needs "value"'),
         ({"revolution_s": 0}, r"/revolution_s: Input should be greater than 0, got 0"),
         ({"revolution_s": "60"}, r"/revolution_s: a number is needed, got '60'"),
         ({"colour": "red"}, r"/colour: no such field"),
@@ -64,7 +67,10 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
         ({"tracks/1/radius_mm": 40}, r"track 2 \(40 mm\) must lie outside track 1 \(50 mm\)"),
         ({"tracks/0/track": 2}, "tracks must be numbered 1, 2, 3"),
         ({"gantry_offset_mm": 51}, r"track 1 \(50 mm\) does not reach the row of star wheels"),
-        ({"star_wheel/release_angle_deg": {"value": 30, "plus_minus": -1}}, r"number at /star_wheel/release_angle_deg"),
+        (
+            {"star_wheel/release_angle_deg": {"value": 30, "plus_minus": -1}},
+            r"^movement: /star_wheel/release_angle_deg/plus_minus: Input should be greater than or equal to 0, got -1",
+        ),
         ({"star_wheel/points": 2}, r"/star_wheel/points: Input should be greater than or equal to 3"),
         ({"star_wheel": {"thickness_mm": 0.4}}, "track 1: state both engagement_arc_mm and release_arc_mm"),
         ({"tracks/2/engagement_arc_mm": 3}, "track 3: state both engagement_arc_mm and release_arc_mm"),
@@ -81,7 +87,7 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
             "keep-out 'clamp': to_radius_mm must be above",
         ),
         ({"tracks": {"first_radius_mm": 50, "count": 3}}, r"/tracks/last_radius_mm: this field is needed"),
-        ({"damper_recovery_s": True}, r"/damper_recovery_s: a number is needed, got True"),
+        ({"damper_recovery_s": True}, r"/damper_recovery_s: a number is needed, got true"),
     ],
 )
 def test_a_fault_in_a_movement_names_its_place_and_what_is_allowed(changes: dict[str, Any], message: str) -> None:
@@ -109,8 +115,13 @@ def test_a_feature_that_cannot_be_is_refused(feature: dict[str, Any], message: s
 
 @pytest.mark.parametrize("text", ["", "{", "[1", b"\xff\xfe", '{"revolution_s": NaN}', "[" * 100_000])
 def test_text_that_is_not_json_is_refused(text: str | bytes) -> None:
-    with pytest.raises(DocumentError, match=r"movement: .*not JSON"):
+    with pytest.raises(DocumentError, match=r"movement: .*(not JSON|nested more than 12 deep)"):
         read_movement(text)
+
+
+def test_a_field_given_twice_is_refused() -> None:
+    with pytest.raises(DocumentError, match="the field 'id' is given twice"):
+        read_movement('{"id": "one", "title": "x", "id": "two"}')
 
 
 def test_a_document_nested_too_deep_is_refused() -> None:
@@ -119,7 +130,7 @@ def test_a_document_nested_too_deep_is_refused() -> None:
 
 
 def test_json_that_is_no_object_is_refused() -> None:
-    with pytest.raises(DocumentError, match="a JSON object is needed, got list"):
+    with pytest.raises(DocumentError, match="a JSON object is needed, got a list"):
         read_movement("[]")
 
 
