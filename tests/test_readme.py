@@ -56,6 +56,7 @@ def run(command: str, folder: Path) -> subprocess.CompletedProcess[str]:
     """A command line of the README, in a folder that has the demo tune where the README says."""
     demo = folder / "service/demo"
     demo.mkdir(parents=True, exist_ok=True)
+    (folder / "demo").mkdir(exist_ok=True)  # made by service/up
     shutil.copy(TOP / "service/demo/tune.mid", demo)
     return subprocess.run(["sh", "-c", command], cwd=folder, capture_output=True, text=True, check=False)
 
