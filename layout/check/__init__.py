@@ -3,8 +3,14 @@
 from collections.abc import Callable
 
 from layout.arrange.arrangement import Arrangement
-from layout.check.blank import keep_outs_are_clear, tracks_are_on_the_disc, webs_to_the_blank_hold
-from layout.check.cutter import cutter_can_form, slits_are_wide_enough
+from layout.check.blank import (
+    keep_outs_are_clear,
+    tracks_are_on_the_disc,
+    webs_to_features_hold,
+    webs_to_the_centre_hole_hold,
+    webs_to_the_rim_hold,
+)
+from layout.check.cutter import cutter_can_form, press_has_the_tool, slits_are_wide_enough
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.music import music_fits_the_turn, something_plays
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
@@ -14,7 +20,8 @@ from layout.check.star_wheel import (
     own_star_is_met,
     star_clears_the_disc,
     star_is_reached,
-    step_is_one_point,
+    step_ends_at_the_next_point,
+    step_reaches_the_next_point,
     tip_clears_the_bend,
     tooth_is_released,
 )
@@ -25,17 +32,21 @@ __all__ = ["Code", "Finding", "Level", "Place", "check", "stands"]
 
 DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     cutter_can_form,
+    press_has_the_tool,
     slits_are_wide_enough,
     star_clears_the_disc,
     star_is_reached,
-    step_is_one_point,
+    step_ends_at_the_next_point,
+    step_reaches_the_next_point,
     tip_clears_the_bend,
     depth_stays_off_the_root,
     tooth_is_released,
     neighbours_are_not_fouled,
     own_star_is_met,
     tracks_are_on_the_disc,
-    webs_to_the_blank_hold,
+    webs_to_the_rim_hold,
+    webs_to_the_centre_hole_hold,
+    webs_to_features_hold,
     keep_outs_are_clear,
     webs_between_openings_hold,
     star_wheels_keep_up,

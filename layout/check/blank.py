@@ -49,20 +49,29 @@ def _off_disc(disc: Disc, index: int) -> list[tuple[str, float, float]]:
     return crossed
 
 
-def webs_to_the_blank_hold(disc: Disc) -> list[Finding]:
-    """An error where an opening leaves less than the least web to rim, centre hole or a feature.
+def webs_to_the_rim_hold(disc: Disc) -> list[Finding]:
+    """An error for a track whose openings leave less than the least web to the rim.
 
     A track whose projections are off the disc leaves no web to speak of; another check says so.
     """
-    findings: list[Finding] = []
-    for index in used_tracks(disc):
-        if _off_disc(disc, index):
-            continue
-        nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
-        rim_mm, hole_mm = disc.movement.disc.outer_diameter_mm / 2, disc.movement.disc.centre_hole_mm / 2
-        findings += _web_to(disc, index, Code.WEB_TO_RIM, "the rim", rim_mm - farthest_mm)
-        findings += _web_to(disc, index, Code.WEB_TO_CENTRE_HOLE, "the centre hole", nearest_mm - hole_mm)
-    return findings + _webs_to_features(disc)
+    rim_mm = disc.movement.disc.outer_diameter_mm / 2
+    return [
+        finding
+        for index in used_tracks(disc)
+        if not _off_disc(disc, index)
+        for finding in _web_to(disc, index, Code.WEB_TO_RIM, "the rim", rim_mm - _radial_reach_mm(disc, index)[1])
+    ]
+
+
+def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
+    """An error for a track whose openings leave less than the least web to the centre hole; as for the rim."""
+    hole_mm, code = disc.movement.disc.centre_hole_mm / 2, Code.WEB_TO_CENTRE_HOLE
+    return [
+        finding
+        for index in used_tracks(disc)
+        if not _off_disc(disc, index)
+        for finding in _web_to(disc, index, code, "the centre hole", _radial_reach_mm(disc, index)[0] - hole_mm)
+    ]
 
 
 def keep_outs_are_clear(disc: Disc) -> list[Finding]:
@@ -120,7 +129,8 @@ def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> lis
     return judged(condition, disc.movement)
 
 
-def _webs_to_features(disc: Disc) -> list[Finding]:
+def webs_to_features_hold(disc: Disc) -> list[Finding]:
+    """An error for every opening that leaves less than the least web to a hole, slot or notch of the blank."""
     points_mm = on_disc_mm(disc.pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
     cores = core_geometries(points_mm)
     findings: list[Finding] = []

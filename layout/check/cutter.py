@@ -7,20 +7,23 @@ from layout.place.disc import Disc
 
 
 def cutter_can_form(disc: Disc) -> list[Finding]:
-    """A laser folds and cannot lance; a press lances, and needs a tool of the right size."""
+    """A laser folds and cannot lance; a press lances and cannot fold."""
     movement, cutter = disc.movement, disc.cutter
-    projection = movement.projection
-    if cutter.kind == "laser":
-        if projection.forming == "lance":
-            return [_cannot(Code.CANNOT_FORM, f"{movement.id} needs lanced projections; {cutter.id} is a laser.")]
-        if projection.kind == "standing" and cutter.fold is None:
-            return [_cannot(Code.CANNOT_FORM, f"{cutter.id} states no fold, and {movement.id} needs standing metal.")]
-        return []
-    if projection.forming == "fold":
+    forming, is_laser = movement.projection.forming, cutter.kind == "laser"
+    if is_laser and forming == "lance":
+        return [_cannot(Code.CANNOT_FORM, f"{movement.id} needs lanced projections; {cutter.id} is a laser.")]
+    if is_laser and movement.projection.kind == "standing" and cutter.fold is None:
+        return [_cannot(Code.CANNOT_FORM, f"{cutter.id} states no fold, and {movement.id} needs standing metal.")]
+    if not is_laser and forming == "fold":
         return [_cannot(Code.CANNOT_FORM, f"{movement.id} needs folded projections; {cutter.id} is a punch press.")]
-    if fitting_tool(movement, cutter) is None:
-        return [_cannot(Code.NO_TOOL, f"{cutter.id} has no tool for {_wanted(disc)}; it has {_tools(disc)}.")]
     return []
+
+
+def press_has_the_tool(disc: Disc) -> list[Finding]:
+    """A press needs a tool of the projection's size."""
+    if disc.cutter.kind == "laser" or fitting_tool(disc.movement, disc.cutter) is not None:
+        return []
+    return [_cannot(Code.NO_TOOL, f"{disc.cutter.id} has no tool for {_wanted(disc)}; it has {_tools(disc)}.")]
 
 
 def _wanted(disc: Disc) -> str:

@@ -1,7 +1,7 @@
 """Checks that star wheel and projection fit: one exact step a pass, at both ends of the depth band.
 
 They speak of a movement's sizes, so each gives at most one finding, or one per track. A movement
-that states measured arcs instead of sizes has nothing for the first six to check.
+that states measured arcs instead of sizes has nothing for the first seven to check.
 """
 
 import math
@@ -12,6 +12,7 @@ from layout.documents.movement import StarWheel
 from layout.mechanics import star_wheel as formulas
 from layout.place.disc import Disc
 
+HALF_TURN_DEG = 180.0
 _H, _R, _ROOT = "/star_wheel/axis_depth_mm", "/star_wheel/tip_radius_mm", "/star_wheel/root_radius_mm"
 _P, _BAND, _FLAT = "/projection/depth_mm", "/projection/depth_plus_minus_mm", "/disc/flatness_mm"
 
@@ -71,47 +72,56 @@ def star_is_reached(disc: Disc) -> list[Finding]:
     return judged(condition, disc.movement)
 
 
-def step_is_one_point(disc: Disc) -> list[Finding]:
-    """One exact step a pass: the leaving angle between π/n and 2π/n at both ends of the depth band."""
+def step_reaches_the_next_point(disc: Disc) -> list[Finding]:
+    """A whole step a pass: the leaving angle at or above π/n at the least depth."""
     sizes = _sizes(disc)
-    if sizes is None:
+    leaving_deg = None if sizes is None else _leaving_deg(sizes[0], sizes[1])
+    if sizes is None or leaving_deg is None:  # the star is not reached at all: another check says so
         return []
-    wheel, low_mm, high_mm = sizes
-    half_deg = 180.0 / wheel.points
-    least_deg, most_deg = _leaving_deg(wheel, low_mm), _leaving_deg(wheel, high_mm)
-    if least_deg is None or most_deg is None:  # the star is not reached, or its axis is: other checks say so
-        return []
-    short = Condition(
+    wheel, low_mm, _ = sizes
+    half_deg = HALF_TURN_DEG / wheel.points
+    condition = Condition(
         code=Code.STEP_TOO_SHORT,
         says=(
-            f"At a depth of {low_mm:.3f} mm, the least of its band, the tip is let go at {least_deg:.2f}°; "
+            f"At a depth of {low_mm:.3f} mm, the least of its band, the tip is let go at {leaving_deg:.2f}°; "
             f"half a step is {half_deg:.2f}°"
         ),
         so="the star does not come round to the next point",
-        measured=least_deg,
+        measured=leaving_deg,
         limit=half_deg,
         unit="deg",
-        margin=least_deg - half_deg,
+        margin=leaving_deg - half_deg,
         rests_on=(),
         at=Place(),
         remedy="Make the projection deeper (depth_mm), or hold its depth closer (depth_plus_minus_mm).",
     )
-    long = Condition(
+    return judged(condition, disc.movement)
+
+
+def step_ends_at_the_next_point(disc: Disc) -> list[Finding]:
+    """No more than a whole step a pass: the leaving angle below 2π/n at the greatest depth."""
+    sizes = _sizes(disc)
+    leaving_deg = None if sizes is None else _leaving_deg(sizes[0], sizes[2])
+    if sizes is None or leaving_deg is None:  # the projection reaches the axis: the check of the root says so
+        return []
+    wheel, _, high_mm = sizes
+    step_deg = 2 * HALF_TURN_DEG / wheel.points
+    condition = Condition(
         code=Code.STEP_TOO_LONG,
         says=(
-            f"At a depth of {high_mm:.3f} mm, the most of its band, the tip is held until {most_deg:.2f}°; "
-            f"a whole step is {2 * half_deg:.2f}°"
+            f"At a depth of {high_mm:.3f} mm, the most of its band, the tip is held until {leaving_deg:.2f}°; "
+            f"a whole step is {step_deg:.2f}°"
         ),
         so="the star is turned by two points in one pass",
-        measured=most_deg,
-        limit=2 * half_deg,
+        measured=leaving_deg,
+        limit=step_deg,
         unit="deg",
-        margin=2 * half_deg - most_deg,
+        margin=step_deg - leaving_deg,
         rests_on=(),
         at=Place(),
         remedy="Make the projection shallower (depth_mm), or hold its depth closer (depth_plus_minus_mm).",
     )
-    return judged(short, disc.movement) + judged(long, disc.movement)
+    return judged(condition, disc.movement)
 
 
 def _leaving_deg(wheel: StarWheel, depth_mm: float) -> float | None:
@@ -179,7 +189,7 @@ def tooth_is_released(disc: Disc) -> list[Finding]:
     least_deg, most_deg = _leaving_deg(wheel, low_mm), _leaving_deg(wheel, high_mm)
     if least_deg is None or most_deg is None:
         return []
-    earliest_deg = most_deg - 360.0 / wheel.points
+    earliest_deg = most_deg - 2 * HALF_TURN_DEG / wheel.points
     release_deg = wheel.release_angle_deg
     late = release_deg > (earliest_deg + least_deg) / 2
     limit_deg = least_deg if late else earliest_deg

@@ -5,14 +5,15 @@ from typing import Any
 import pytest
 
 from layout.check import Code, Finding, Level, check
-from layout.check.cutter import cutter_can_form, slits_are_wide_enough
+from layout.check.cutter import cutter_can_form, press_has_the_tool, slits_are_wide_enough
 from layout.check.star_wheel import (
     depth_stays_off_the_root,
     neighbours_are_not_fouled,
     own_star_is_met,
     star_clears_the_disc,
     star_is_reached,
-    step_is_one_point,
+    step_ends_at_the_next_point,
+    step_reaches_the_next_point,
     tip_clears_the_bend,
     tooth_is_released,
 )
@@ -39,9 +40,9 @@ def test_a_shipped_movement_with_every_track_used_is_sound(movement: Movement, c
         # least depth 0.65 - 0.15 = 0.5: H - p = 3.25, the tips reach 3.2
         (star_is_reached, {"projection/depth_mm": 0.65}, Code.STAR_NOT_REACHED, 3.25, 3.2),
         # least depth 1.1 - 0.15 = 0.95: acos(2.8 / 3.2) = 28.955 deg, half a step is 30
-        (step_is_one_point, {"projection/depth_mm": 1.1}, Code.STEP_TOO_SHORT, 28.955, 30.0),
+        (step_reaches_the_next_point, {"projection/depth_mm": 1.1}, Code.STEP_TOO_SHORT, 28.955, 30.0),
         # greatest depth 2.1 + 0.15 = 2.25: acos(1.5 / 3.2) = 62.046 deg, a step is 60
-        (step_is_one_point, {"projection/depth_mm": 2.1}, Code.STEP_TOO_LONG, 62.046, 60.0),
+        (step_ends_at_the_next_point, {"projection/depth_mm": 2.1}, Code.STEP_TOO_LONG, 62.046, 60.0),
         # H - R - flatness = 3.65 - 3.2 - 0.1 = 0.35 against the fold's 0.4
         (tip_clears_the_bend, {"star_wheel/axis_depth_mm": 3.65}, Code.TIP_IN_BEND, 0.35, 0.4),
         # greatest depth 2.15 + 0.15 = 2.3: 1.45 over the axis, the star is solid up to 1.5
@@ -67,7 +68,8 @@ def test_a_star_wheel_condition_that_fails_gives_its_numbers(
 CONDITIONS = [
     star_clears_the_disc,
     star_is_reached,
-    step_is_one_point,
+    step_ends_at_the_next_point,
+    step_reaches_the_next_point,
     tip_clears_the_bend,
     depth_stays_off_the_root,
     tooth_is_released,
@@ -86,8 +88,8 @@ def test_the_plain_movement_meets_every_condition(one_check: Any) -> None:
     [
         (star_clears_the_disc, {"star_wheel/axis_depth_mm": 3.301}),
         (star_is_reached, {"projection/depth_mm": 0.701}),
-        (step_is_one_point, {"projection/depth_mm": 1.13}),  # acos(2.77/3.2) = 30.04 deg
-        (step_is_one_point, {"projection/depth_mm": 1.999}),  # acos(1.601/3.2) = 59.98 deg
+        (step_reaches_the_next_point, {"projection/depth_mm": 1.13}),  # acos(2.77/3.2) = 30.04 deg
+        (step_ends_at_the_next_point, {"projection/depth_mm": 1.999}),  # acos(1.601/3.2) = 59.98 deg
         (tip_clears_the_bend, {"star_wheel/axis_depth_mm": 3.701}),
         (depth_stays_off_the_root, {"projection/depth_mm": 2.099}),
         (tooth_is_released, {"star_wheel/release_angle_deg": 38.9}),
@@ -200,7 +202,9 @@ def test_a_condition_that_holds_by_less_than_its_numbers_are_worth_is_a_warning(
 def test_a_projection_the_cutter_cannot_make_is_found(
     movement: Movement, cutter: Cutter, code: Code, message: str
 ) -> None:
-    [finding] = cutter_can_form(disc_of(movement, [(1, 10.0)], cutter))
+    disc = disc_of(movement, [(1, 10.0)], cutter)
+
+    [finding] = press_has_the_tool(disc) if code is Code.NO_TOOL else cutter_can_form(disc)
 
     assert finding.code is code
     assert finding.message.startswith(message)
@@ -210,7 +214,7 @@ def test_a_projection_the_cutter_cannot_make_is_found(
 def test_the_shipped_cutters_can_make_the_shipped_movements(movement: Movement, cutter: Cutter) -> None:
     disc = disc_of(movement, [(1, 10.0)], cutter)
 
-    assert cutter_can_form(disc) + slits_are_wide_enough(disc) == []
+    assert cutter_can_form(disc) + press_has_the_tool(disc) + slits_are_wide_enough(disc) == []
 
 
 @pytest.mark.parametrize(("movement", "what"), [(SHIPPED[0], "slit is 0.420"), (SHIPPED[2], "slot is 1.300")])

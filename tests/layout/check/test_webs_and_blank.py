@@ -9,7 +9,13 @@ from hypothesis import strategies as st
 from shapely import affinity
 
 from layout.check import Code, Level, check
-from layout.check.blank import keep_outs_are_clear, tracks_are_on_the_disc, webs_to_the_blank_hold
+from layout.check.blank import (
+    keep_outs_are_clear,
+    tracks_are_on_the_disc,
+    webs_to_features_hold,
+    webs_to_the_centre_hole_hold,
+    webs_to_the_rim_hold,
+)
 from layout.check.webs import webs_between_openings_hold
 from layout.documents import Cutter, Movement
 from layout.place.disc import Disc
@@ -145,7 +151,7 @@ def test_an_opening_too_near_an_edge_of_the_blank_is_found(
 ) -> None:
     disc = disc_of(movement_with(changes), [(1, 10.0), (3, 10.0)])
 
-    [finding] = webs_to_the_blank_hold(disc)
+    [finding] = webs_to_the_rim_hold(disc) + webs_to_the_centre_hole_hold(disc)
 
     assert finding.code is code
     assert finding.measured == pytest.approx(measured, abs=0.002)
@@ -154,7 +160,9 @@ def test_an_opening_too_near_an_edge_of_the_blank_is_found(
 
 
 def test_openings_clear_of_rim_and_hole_pass() -> None:
-    assert webs_to_the_blank_hold(disc_of(PLAIN, [(1, 10.0), (3, 10.0)])) == []
+    disc = disc_of(PLAIN, [(1, 10.0), (3, 10.0)])
+
+    assert webs_to_the_rim_hold(disc) + webs_to_the_centre_hole_hold(disc) + webs_to_features_hold(disc) == []
 
 
 @pytest.mark.parametrize(
@@ -169,7 +177,7 @@ def test_openings_clear_of_rim_and_hole_pass() -> None:
 def test_an_opening_too_near_a_feature_is_found(feature: dict[str, Any], measured: float) -> None:
     movement = movement_with({"disc/features": [{"purpose": "drive", "first_at_deg": 90, "count": 2, **feature}]})
 
-    [finding] = webs_to_the_blank_hold(disc_of(movement, [(1, 10.0)]))
+    [finding] = webs_to_features_hold(disc_of(movement, [(1, 10.0)]))
 
     assert finding.code is Code.WEB_TO_FEATURE
     assert finding.measured == pytest.approx(measured, abs=0.02)
@@ -180,7 +188,7 @@ def test_an_opening_too_near_a_notch_of_the_rim_is_found() -> None:
     notch = {"purpose": "location", "shape": "notch", "radius_mm": 118, "first_at_deg": 90, "width_mm": 33}
     movement = movement_with({"disc/features": [{**notch, "length_mm": 4}]})
 
-    [finding] = webs_to_the_blank_hold(disc_of(movement, [(3, 10.0)]))
+    [finding] = webs_to_features_hold(disc_of(movement, [(3, 10.0)]))
 
     # the notch reaches in to 118 - 16.5 = 101.5, the opening out to 101.02
     assert finding.measured == pytest.approx(0.47, abs=0.02)
@@ -228,7 +236,7 @@ def test_a_track_off_the_disc_is_found(changes: dict[str, Any], message: str) ->
 def test_a_track_off_the_disc_is_not_told_a_second_time_as_a_web() -> None:
     disc = disc_of(movement_with({"disc/outer_diameter_mm": 180}), [(1, 10.0), (3, 10.0)])
 
-    assert webs_to_the_blank_hold(disc) == []
+    assert webs_to_the_rim_hold(disc) + webs_to_the_centre_hole_hold(disc) == []
 
 
 def test_tracks_on_the_disc_pass() -> None:
