@@ -65,6 +65,23 @@ def test_neighbouring_tracks_of_the_shipped_movements_can_sound_together(movemen
     assert spacing(movement, cutter).between == ()
 
 
+@pytest.mark.parametrize(
+    ("movement", "thinnest_mm"),
+    # worked out by hand when the movements were drawn up: the inner tracks, at the angle where corners pass
+    [(FERNHOLLOW, 0.532), (MOSSBROOK, 0.514), (TARNLIGHT, 0.750)],
+    ids=lambda value: getattr(value, "id", ""),
+)
+def test_the_thinnest_web_between_neighbours_at_any_angle(movement: Movement, thinnest_mm: float) -> None:
+    turning, pattern = turning_of(movement), pattern_of(movement, LASER)
+    inner_mm, outer_mm = turning.radius_mm[0], turning.radius_mm[1]
+    angles = np.linspace(-3.5 / inner_mm, 3.5 / inner_mm, 2001)
+    first = np.column_stack([np.full(2001, inner_mm), np.zeros(2001)])
+
+    webs = webs_mm(turning, pattern, first, np.column_stack([np.full(2001, outer_mm), angles]))
+
+    assert webs.min() == pytest.approx(thinnest_mm, abs=5e-4)
+
+
 @given(
     pitch_mm=st.floats(2.1, 3.5),
     radius_mm=st.floats(20, 100),
