@@ -24,7 +24,7 @@ from layout.documents.cutter import LAYER_COLOURS, Cutter
 from layout.errors import DrawingReadError
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.read_back.contour import Contour
-from layout.read_back.limits import FARTHEST_MM, JOINED_WITHIN_MM, MOST_CUTS, MOST_VERTICES
+from layout.read_back.limits import JOINED_WITHIN_MM, MOST_CUTS, MOST_VERTICES
 
 CUT_LAYERS = ("SLITS", "SLOTS", "HITS", "HOLES", "RIM")
 _FULL_TURN_DEG = 360.0
@@ -53,14 +53,20 @@ class CutDrawing:
     mended: bool
 
 
-def cut_drawing_of(document: Drawing, cutter: Cutter, *, mended: bool) -> CutDrawing:
+def cut_drawing_of(document: Drawing, cutter: Cutter, *, farthest_mm: float, mended: bool) -> CutDrawing:
     """What is cut in a document's model space.
+
+    Args:
+        document: The DXF file, read.
+        cutter: For its layer names and the side its drawings show.
+        farthest_mm: How far from the centre a coordinate may lie.
+        mended: Whether the file was damaged.
 
     Raises:
         DrawingReadError: A coordinate that is no number or lies absurdly far off, or too many cuts.
     """
     ours = {cutter.layer(name).name.casefold(): name for name in LAYER_COLOURS}
-    collecting = _Collecting()
+    collecting = _Collecting(farthest_mm=farthest_mm)
     for entity in document.modelspace():
         name = str(entity.dxf.layer)
         layer = ours.get(name.casefold())
@@ -75,6 +81,7 @@ def cut_drawing_of(document: Drawing, cutter: Cutter, *, mended: bool) -> CutDra
 
 @dataclass(slots=True)
 class _Collecting:
+    farthest_mm: float
     contours: list[Contour] = field(default_factory=list)
     hits_mm: list[tuple[float, float]] = field(default_factory=list)
     strangers: Counter[tuple[str, str]] = field(default_factory=Counter)
@@ -85,13 +92,14 @@ class _Collecting:
         if len(self.contours) + len(self.hits_mm) >= MOST_CUTS:
             raise DrawingReadError(f"drawing: more than {MOST_CUTS} cuts; is this the drawing of one disc?")
         if isinstance(entity, Point) and layer == "HITS":
-            self.hits_mm.append(_checked(layer, [(entity.dxf.location.x, entity.dxf.location.y, 0.0)])[0][:2])
+            place = entity.dxf.location
+            self.hits_mm.append(_checked(layer, [(place.x, place.y, 0.0)], self.farthest_mm)[0][:2])
             return
         found = _pieces(entity)
         if found is None or layer == "HITS" or not 0 < len(found[0]) <= MOST_VERTICES:
             self.strangers[layer, entity.dxftype()] += 1
             return
-        vertices, closed = _checked(layer, found[0]), found[1]
+        vertices, closed = _checked(layer, found[0], self.farthest_mm), found[1]
         if isinstance(entity, Line | Arc) and not closed:
             self._join(layer, vertices)
         else:
@@ -198,13 +206,13 @@ def _turned_over(vertices: list[Vertex], side: int) -> list[Vertex]:
     return vertices if side > 0 else [(-x, y, -bulge) for x, y, bulge in vertices]
 
 
-def _checked(layer: str, vertices: Iterable[Vertex]) -> list[Vertex]:
+def _checked(layer: str, vertices: Iterable[Vertex], farthest_mm: float) -> list[Vertex]:
     checked = [(float(x), float(y), float(bulge)) for x, y, bulge in vertices]
     for x, y, bulge in checked:
         # Not-a-number compares false with everything, so it ends here too.
-        if not (abs(x) <= FARTHEST_MM and abs(y) <= FARTHEST_MM and abs(bulge) <= _WIDEST_BULGE):
+        if not (abs(x) <= farthest_mm and abs(y) <= farthest_mm and abs(bulge) <= _WIDEST_BULGE):
             raise DrawingReadError(
                 f"drawing: layer {layer} has a vertex at ({x:g}, {y:g}) with bulge {bulge:g}; coordinates must be "
-                f"within {FARTHEST_MM:g} mm of the centre; check the drawing's units and origin"
+                f"within {farthest_mm:g} mm of the centre; check the drawing's units and origin"
             )
     return checked

@@ -30,12 +30,13 @@ _STUMBLES = (
 )
 
 
-def read_drawing(dxf: bytes, cutter: Cutter) -> CutDrawing:
+def read_drawing(dxf: bytes, cutter: Cutter, *, farthest_mm: float) -> CutDrawing:
     """What is cut in a DXF file.
 
     Args:
         dxf: The file.
         cutter: For its layer names and the side its drawings show.
+        farthest_mm: How far from the centre a coordinate may lie.
 
     Raises:
         DrawingReadError: Too large, no ASCII DXF, damaged beyond use, or not in millimetres.
@@ -44,7 +45,7 @@ def read_drawing(dxf: bytes, cutter: Cutter) -> CutDrawing:
     with _stumbles_as_errors():
         document, mended = _document(dxf)
         _refuse_other_units(dxf, document)
-        return cut_drawing_of(document, cutter, mended=mended)
+        return cut_drawing_of(document, cutter, farthest_mm=farthest_mm, mended=mended)
 
 
 def _refuse_by_its_bytes(dxf: bytes) -> None:

@@ -4,9 +4,9 @@ MOST_MIB = 10  # MiB; a disc of 3000 projections takes about 1, other programs' 
 MOST_CUTS = 10_000  # contours and points; several times the fullest disc of 67 tracks
 MOST_VERTICES = 20_000  # vertices of one contour; a rim drawn in straight pieces of 0.1 mm has 13,000
 MOST_TRACED = 1_000_000  # points that trace holes and rim; 1,000 rims of the largest disc
-FARTHEST_MM = 2_000.0  # mm; no disc is 4 m across, and what lies farther off was not drawn in mm
+FARTHEST_MM = 2_000.0  # mm; what lies farther off was not drawn in mm, unless the movement's own disc reaches so far
 
-REPEATED_WITHIN_MM = 1e-6  # mm; below what a file of six decimals can tell apart
+REPEATED_WITHIN_MM = 5e-5  # mm; nothing a cutter can tell from nothing, and far above the rounding of a file
 STRAIGHT_WITHIN_MM = 1e-5  # mm; a vertex this near a straight line was put in by a program, not by a person
 JOINED_WITHIN_MM = 1e-4  # mm; ends of lines and arcs of one contour, after rounding to four decimals
 TRACED_WITHIN_MM = 0.002  # mm; how far a traced arc may lie inside the true one: a tenth of what is compared

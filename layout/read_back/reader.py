@@ -1,15 +1,18 @@
 """From the bytes of a drawing to the disc that would be cut."""
 
+import numpy as np
+
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import frozen_floats, frozen_ints
-from layout.mechanics.projection import pattern_of
+from layout.mechanics.projection import Pattern, pattern_of
 from layout.mechanics.turning import turning_of
 from layout.place.disc import Disc
 from layout.read_back.blank import compare_blank
 from layout.read_back.entities import CUT_LAYERS, CutDrawing
 from layout.read_back.file import read_drawing
+from layout.read_back.limits import FARTHEST_MM
 from layout.read_back.projections import Wanted, edges_of
 from layout.read_back.reading import Reading
 
@@ -35,8 +38,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     Raises:
         DrawingReadError: The bytes are no such file.
     """
-    drawing = read_drawing(dxf, cutter)
     turning, pattern = turning_of(movement), pattern_of(movement, cutter)
+    drawing = read_drawing(dxf, cutter, farthest_mm=_farthest_mm(movement, pattern))
     edges, findings = edges_of(drawing, Wanted(cutter=cutter, turning=turning, pattern=pattern))
     disc = Disc(
         movement=movement,
@@ -47,6 +50,15 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
         edge_angle_rad=frozen_floats(edges.edge_angle_rad),
     )
     return Reading(disc=disc, findings=(*_of_the_file(drawing, cutter), *findings, *compare_blank(drawing, movement)))
+
+
+def _farthest_mm(movement: Movement, pattern: Pattern) -> float:
+    """How far from the centre a cut may lie: twice as far as this movement's own cuts, and never less than any disc's.
+
+    A movement document may describe a disc of any size, and what we draw for it must read back.
+    """
+    tracks_mm = movement.tracks[-1].radius_mm + float(np.abs(pattern.opening.points_mm).sum(axis=1).max())
+    return max(FARTHEST_MM, 2 * tracks_mm, movement.disc.outer_diameter_mm)
 
 
 def _of_the_file(drawing: CutDrawing, cutter: Cutter) -> list[Finding]:

@@ -70,13 +70,54 @@ def test_any_disc_that_is_drawn_is_read_back(seed: int, count: int, which: int, 
 @pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
 def test_the_files_this_program_writes_play_what_was_placed(movement: Movement, cutter: Cutter) -> None:
     disc = random_disc(movement, cutter, count=300)
-    plan = plan_cuts(disc, title="tune", fingerprint="0123456789abcdef", not_good=None)
+    order = np.lexsort((disc.edge_angle_rad, disc.track_index))
 
-    reading = read_back(write_dxf(plan.disc, cutter), movement, cutter)
+    reading = read_back(written(disc), movement, cutter)
 
     # The writer rounds to a micrometre or less; 1e-6 rad is 15 microseconds at a turn of 90 s.
     assert_same_disc(reading, disc, within_rad=1e-6)
-    assert play(reading.disc).sounds_s == pytest.approx(play(disc).sounds_s[plan.order], abs=1e-4)
+    assert play(reading.disc).sounds_s == pytest.approx(play(disc).sounds_s[order], abs=1e-4)
+
+
+# Sizes near the rounding of the file, where a vertex more or less would make another outline.
+SLIVER_CUTTERS = {
+    "slit a hundredth of a micrometre wide": {"fold/relief_mm": 0.0, "fold/slit_width_mm": 1e-5},
+    "relief a nanometre long": {"fold/relief_mm": 1e-6, "fold/relief_width_mm": 0.8, "fold/inside_radius_mm": 1e-9}
+    | {"fold/slit_width_mm": 0.1, "fold/fold_side": "ahead"},
+    "relief a nanometre wide": {"fold/relief_mm": 0.5, "fold/relief_width_mm": 1e-6},
+}
+
+
+@pytest.mark.parametrize("changes", SLIVER_CUTTERS.values(), ids=SLIVER_CUTTERS)
+def test_a_cutter_with_a_sliver_of_a_slit_or_relief_reads_back(changes: dict[str, float]) -> None:
+    cutter = cutter_with({**changes, "layers": {"SLITS": {"name": "Defpoints", "colour": 1}}})
+    disc = random_disc(SHIPPED[0], cutter, count=300)
+
+    reading = read_back(written(disc), SHIPPED[0], cutter)
+
+    assert_same_disc(reading, disc, within_rad=1e-6)
+
+
+def test_a_slot_that_is_all_but_round_reads_back() -> None:
+    movement = movement_with({"projection/length_mm": 1.3000001}, SHIPPED[2].model_dump(exclude_none=True))
+    disc = random_disc(movement, count=300)
+
+    assert_same_disc(read_back(written(disc), movement, LASER), disc, within_rad=1e-5)
+
+
+def test_a_disc_of_any_size_that_a_movement_has_reads_back() -> None:
+    large = movement_with(
+        {"disc/outer_diameter_mm": 9000, "tracks": [{"track": 1, "radius_mm": 50}, {"track": 2, "radius_mm": 4400}]}
+        | {"teeth": [{"tooth": 1, "track": 1, "pitch": "C5"}, {"tooth": 2, "track": 2, "pitch": "E5"}]}
+    )
+    disc = disc_of(large, [(1, 5.0), (2, 10.0)])
+
+    assert_same_disc(read_back(written(disc), large, LASER), disc, within_rad=1e-6)
+
+
+def written(disc: Disc) -> bytes:
+    plan = plan_cuts(disc, title="tune", fingerprint="0123456789abcdef", not_good=None)
+    return write_dxf(plan.disc, disc.cutter)
 
 
 def test_the_working_edge_of_a_quarter_turn_is_found_at_its_absolute_place() -> None:
