@@ -39,7 +39,7 @@ _WRITERS: dict[str, Callable[[CutPlan, LaidOut], bytes]] = {
     "record.dxf": lambda plan, laid_out: write_dxf(plan.record, laid_out.disc.cutter),
     "disc.svg": write_svg,
     "hits.csv": lambda plan, laid_out: write_hits(plan, laid_out.disc),
-    "layout.json": lambda _, laid_out: write_layout_json(laid_out),
+    "layout.json": lambda plan, laid_out: write_layout_json(laid_out, despite_findings=plan.not_good),
 }
 
 
@@ -99,30 +99,13 @@ def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings)
     )
 
 
-def file_of(laid_out: LaidOut, name: str, *, not_good: str | None = None) -> bytes:
-    """One file of a layout.
-
-    Args:
-        laid_out: The layout.
-        name: One of FILES.
-        not_good: A person's reason to have the cutting files although an error-level finding
-            stands; they are then marked NOT GOOD TO CUT. Ignored where none stands.
-    """
-    plan = plan_cuts(
-        laid_out.disc,
-        title=laid_out.title,
-        fingerprint=laid_out.fingerprint,
-        not_good=None if laid_out.good_to_cut else not_good,
-    )
-    return _WRITERS[name](plan, laid_out)
-
-
 def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:
     """The files of a layout, by name; the cutting files are kept back where they must be.
 
     Args:
         laid_out: The layout.
-        not_good: As for file_of; with it the cutting files are given in any case.
+        not_good: A person's reason to have the cutting files although an error-level finding
+            stands; they are then marked NOT GOOD TO CUT. Ignored where none stands.
     """
     given = FILES if laid_out.good_to_cut or not_good else [name for name in FILES if name not in CUTTING_FILES]
     plan = plan_cuts(

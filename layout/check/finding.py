@@ -46,6 +46,8 @@ class Code(StrEnum):
     OFF_TRACK = "off-track"
     OUT_OF_SHAPE = "out-of-shape"
     BLANK_DIFFERS = "blank-differs"
+    NOT_A_CUTTING_FILE = "not-a-cutting-file"
+    MARKED_NOT_GOOD = "marked-not-good"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

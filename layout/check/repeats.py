@@ -36,10 +36,9 @@ def star_wheels_keep_up(disc: Disc) -> list[Finding]:
 def dampers_recover(disc: Disc) -> list[Finding]:
     """An error for two plucks of a damped tooth nearer than its recovery, at the movement's fastest turn."""
     movement = disc.movement
-    damped = {tooth.track for tooth in movement.teeth if tooth.damped and tooth.usable}
     findings: list[Finding] = []
     for index in used_tracks(disc):
-        if index + 1 not in damped:
+        if index + 1 not in movement.damped_tracks:
             continue
         for one, two, apart_rad in _neighbours(disc, index):
             apart_s = apart_rad * movement.fastest_revolution_s / FULL_TURN_RAD

@@ -5,11 +5,12 @@ from typing import Annotated, Literal, Self
 from pydantic import Field, model_validator
 
 from layout.documents.reading import (
+    Angle,
     Identifier,
-    NotNegative,
-    Number,
+    Length,
+    LengthOrZero,
+    Offset,
     Part,
-    Positive,
     Title,
     check_document,
     read_json,
@@ -37,12 +38,12 @@ MOST_TOOLS = 60  # tools; more than a press's magazine holds, keeps a document s
 class Fold(Part):
     """How this laser's shop folds a standing projection out of a U-shaped cut."""
 
-    inside_radius_mm: Positive
+    inside_radius_mm: Length
     fold_side: Literal["behind", "ahead"]
-    relief_mm: NotNegative
+    relief_mm: LengthOrZero
     slit: Literal["channel", "centre-line"]
-    slit_width_mm: Positive | None = None
-    relief_width_mm: Positive | None = None
+    slit_width_mm: Length | None = None
+    relief_width_mm: Length | None = None
 
     @model_validator(mode="after")
     def _channel_has_a_width(self) -> Self:
@@ -66,11 +67,11 @@ class Tool(Part):
     tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$")]
     title: Title
     makes: Literal["lance", "slot"]
-    footprint_length_mm: Positive
-    footprint_width_mm: Positive
-    edge_ahead_mm: Number
-    tab_width_mm: Positive | None = None
-    tab_depth_mm: Positive | None = None
+    footprint_length_mm: Length
+    footprint_width_mm: Length
+    edge_ahead_mm: Offset
+    tab_width_mm: Length | None = None
+    tab_depth_mm: Length | None = None
 
     @model_validator(mode="after")
     def _fields_of_its_kind(self) -> Self:
@@ -79,6 +80,8 @@ class Tool(Part):
                 raise ValueError(f"lance tool {self.tool} needs tab_width_mm and tab_depth_mm")
             if self.footprint_width_mm < self.tab_width_mm:
                 raise ValueError(f"tool {self.tool}: footprint_width_mm is below tab_width_mm")
+            if abs(self.edge_ahead_mm) > self.footprint_length_mm / 2:
+                raise ValueError(f"tool {self.tool}: edge_ahead_mm puts the working edge outside the footprint")
         elif self.footprint_length_mm < self.footprint_width_mm:
             raise ValueError(f"slot tool {self.tool}: footprint_length_mm is below footprint_width_mm")
         elif abs(self.edge_ahead_mm + self.footprint_length_mm / 2) > SAME_PLACE_MM:
@@ -101,12 +104,12 @@ class Cutter(Part):
     id: Identifier
     title: Title
     kind: Literal["laser", "punch-press"]
-    kerf_mm: NotNegative
+    kerf_mm: LengthOrZero
     kerf_compensated: bool = False
-    min_web_mm: Annotated[Positive, Field(le=WIDEST_WEB_MM)]
-    min_slot_mm: Positive
-    position_tolerance_mm: NotNegative
-    angle_tolerance_deg: NotNegative = 0.0
+    min_web_mm: Annotated[Length, Field(le=WIDEST_WEB_MM)]
+    min_slot_mm: Length
+    position_tolerance_mm: LengthOrZero
+    angle_tolerance_deg: Annotated[Angle, Field(ge=0)] = 0.0
     drawn_from: Literal["label-side", "star-side"]
     fold: Fold | None = None
     tools: Annotated[tuple[Tool, ...], Field(max_length=MOST_TOOLS)] = ()

@@ -13,23 +13,30 @@ from pydantic import Discriminator, Field, PrivateAttr, Tag, field_validator, mo
 
 from layout.documents.pitch import key_of
 from layout.documents.reading import (
+    FULL_TURN_DEG,
+    Angle,
     Identifier,
     Json,
-    NotNegative,
-    Number,
+    Length,
+    LengthOrZero,
+    Offset,
     Part,
     Positive,
+    PositiveAngle,
     Stated,
+    Time,
+    TimeOrZero,
     Title,
     check_document,
     read_json,
 )
 from layout.errors import DocumentError, Problem
 
-FULL_TURN_DEG = 360.0
-MOST_TRACKS = 400  # tracks; far above any comb, keeps a document from being made slow
-MOST_TEETH = 800  # teeth; two combs of MOST_TRACKS
-MOST_FEATURES = 400  # holes of one feature row; a drive row of a large disc has under 200
+MOST_TRACKS = 200  # tracks; far above any comb, keeps a document from being made slow
+MOST_TEETH = 400  # teeth; two combs of MOST_TRACKS
+MOST_FEATURES = 400  # holes of all feature rows; a drive row of a large disc has under 200
+MOST_ROWS = 32  # feature rows, and keep-out rings, and stages of a train; a disc has a few of each
+MOST_CENTS = 1200.0  # cents; an octave, by which no comb is out of tune
 
 
 class Feature(Part):
@@ -37,30 +44,30 @@ class Feature(Part):
 
     purpose: Literal["drive", "stop", "location"]
     shape: Literal["hole", "slot", "notch"]
-    radius_mm: Positive
-    first_at_deg: Number = 0.0
+    radius_mm: Length
+    first_at_deg: Angle = 0.0
     count: Annotated[int, Field(ge=1, le=MOST_FEATURES)] = 1
-    width_mm: Positive
-    length_mm: Positive
+    width_mm: Length
+    length_mm: Length
 
 
 class DiscBlank(Part):
     """The sheet the disc is made of, and what is cut in it beside the tune."""
 
-    outer_diameter_mm: Positive
-    thickness_mm: Positive
+    outer_diameter_mm: Length
+    thickness_mm: Length
     material: Title
-    centre_hole_mm: Positive
-    flatness_mm: NotNegative = 0.0
-    run_out_mm: NotNegative = 0.0
-    features: tuple[Feature, ...] = ()
+    centre_hole_mm: Length
+    flatness_mm: LengthOrZero = 0.0
+    run_out_mm: LengthOrZero = 0.0
+    features: Annotated[tuple[Feature, ...], Field(max_length=MOST_ROWS)] = ()
 
 
 class KeepOut(Part):
     """A ring of the disc where nothing may be cut, and why."""
 
-    from_radius_mm: NotNegative
-    to_radius_mm: Positive
+    from_radius_mm: LengthOrZero
+    to_radius_mm: Length
     why: Title
 
 
@@ -68,29 +75,29 @@ class StarWheel(Part):
     """A star wheel known by its sizes; its arcs are computed. Only a point's tip touches."""
 
     points: Annotated[int, Field(ge=3, le=60)]
-    tip_radius_mm: Positive
-    root_radius_mm: Positive
-    axis_depth_mm: Positive
-    thickness_mm: Positive
-    release_angle_deg: Number
+    tip_radius_mm: Length
+    root_radius_mm: Length
+    axis_depth_mm: Length
+    thickness_mm: Length
+    release_angle_deg: Angle
 
 
 class MeasuredStarWheel(Part):
     """A star wheel known by what was measured: both arcs for all tracks, or none and each track states its own."""
 
-    engagement_arc_mm: Positive | None = None
-    release_arc_mm: Number | None = None
-    thickness_mm: Positive
+    engagement_arc_mm: Length | None = None
+    release_arc_mm: Offset | None = None
+    thickness_mm: Length
 
 
 class Projection(Part):
     """What turns a star wheel: standing metal, or a slot the point falls into."""
 
     kind: Literal["standing", "slot"]
-    width_mm: Positive
-    depth_mm: Positive | None = None
-    depth_plus_minus_mm: NotNegative = 0.0
-    length_mm: Positive | None = None
+    width_mm: Length
+    depth_mm: Length | None = None
+    depth_plus_minus_mm: LengthOrZero = 0.0
+    length_mm: Length | None = None
     forming: Literal["any", "fold", "lance"] = "any"
 
     @model_validator(mode="after")
@@ -118,16 +125,16 @@ class Drive(Part):
     torque_limit_nmm: Positive | None = None
     surplus_torque_nmm: Positive | None = None
     disc_inertia_kg_m2: Positive | None = None
-    train: tuple[TrainStage, ...] = ()
+    train: Annotated[tuple[TrainStage, ...], Field(max_length=MOST_ROWS)] = ()
 
 
 class Track(Part):
     """A circle on the disc served by one star wheel; track 1 is the innermost."""
 
     track: Annotated[int, Field(ge=1)]
-    radius_mm: Positive
-    engagement_arc_mm: Positive | None = None
-    release_arc_mm: Number | None = None
+    radius_mm: Length
+    engagement_arc_mm: Length | None = None
+    release_arc_mm: Offset | None = None
 
 
 class Tooth(Part):
@@ -136,11 +143,11 @@ class Tooth(Part):
     tooth: Annotated[int, Field(ge=1)]
     track: Annotated[int, Field(ge=1)]
     pitch: str
-    cents: Number = 0.0
+    cents: Annotated[Offset, Field(ge=-MOST_CENTS, le=MOST_CENTS)] = 0.0
     damped: bool = True
     usable: bool = True
-    stiffness_n_per_mm: Positive | None = None
-    lift_mm: Positive | None = None
+    stiffness_n_per_mm: Length | None = None
+    lift_mm: Length | None = None
 
     @field_validator("pitch")
     @classmethod
@@ -168,20 +175,20 @@ class Movement(Part):
     revision: Annotated[int, Field(ge=1)] = 1
     title: Title
     turns: Literal["clockwise", "anticlockwise"]
-    revolution_s: Positive
-    fastest_revolution_s: Positive
-    before_music_deg: Positive
-    after_music_deg: Positive
-    gantry_offset_mm: Number = 0.0
+    revolution_s: Time
+    fastest_revolution_s: Time
+    before_music_deg: PositiveAngle
+    after_music_deg: PositiveAngle
+    gantry_offset_mm: Offset = 0.0
     disc: DiscBlank
-    keep_out: tuple[KeepOut, ...] = ()
+    keep_out: Annotated[tuple[KeepOut, ...], Field(max_length=MOST_ROWS)] = ()
     star_wheel: Annotated[
         Annotated[StarWheel, Tag("computed")] | Annotated[MeasuredStarWheel, Tag("measured")],
         Discriminator(_star_wheel_kind),
     ]
     projection: Projection
-    damper_arc_mm: NotNegative = 0.0
-    damper_recovery_s: NotNegative = 0.0
+    damper_arc_mm: LengthOrZero = 0.0
+    damper_recovery_s: TimeOrZero = 0.0
     drive: Drive | None = None
     tracks: Annotated[tuple[Track, ...], Field(min_length=1, max_length=MOST_TRACKS)]
     teeth: Annotated[tuple[Tooth, ...], Field(min_length=1, max_length=MOST_TEETH)]
@@ -191,6 +198,24 @@ class Movement(Part):
     def stated(self) -> Mapping[str, Stated]:
         """What the document states of its numbers' worth, by the JSON pointer of the number."""
         return self._stated
+
+    @property
+    def damped_tracks(self) -> frozenset[int]:
+        """The numbers of the tracks that pluck a usable tooth with a damper."""
+        return frozenset(tooth.track for tooth in self.teeth if tooth.damped and tooth.usable)
+
+    def arcs_mm(self, track_index: int) -> tuple[float, float]:
+        """Engagement and release arc of a track, by its place from 0: measured ones win over the wheel's own.
+
+        A computed wheel's are the chord between two tips, 2R·sin(π/n), and R·sin β_r.
+        """
+        track, wheel = self.tracks[track_index], self.star_wheel
+        if track.engagement_arc_mm is not None and track.release_arc_mm is not None:
+            return track.engagement_arc_mm, track.release_arc_mm
+        if isinstance(wheel, StarWheel):
+            chord_mm = 2 * wheel.tip_radius_mm * math.sin(math.pi / wheel.points)
+            return chord_mm, wheel.tip_radius_mm * math.sin(math.radians(wheel.release_angle_deg))
+        return wheel.engagement_arc_mm or 0.0, wheel.release_arc_mm or 0.0
 
     def plus_minus(self, pointer: str) -> float:
         """How far the number at a JSON pointer may be off, in its own unit; 0 where not stated."""
@@ -238,14 +263,8 @@ class Movement(Part):
 
     @model_validator(mode="after")
     def _release_happens_on_every_track(self) -> Self:
-        wheel = self.star_wheel
-        for track in self.tracks:
-            if track.release_arc_mm is not None:
-                release_mm = track.release_arc_mm
-            elif isinstance(wheel, StarWheel):
-                release_mm = wheel.tip_radius_mm * math.sin(math.radians(wheel.release_angle_deg))
-            else:
-                release_mm = wheel.release_arc_mm or 0.0
+        for index, track in enumerate(self.tracks):
+            _, release_mm = self.arcs_mm(index)
             if abs(self.gantry_offset_mm) + abs(release_mm) >= track.radius_mm:
                 raise ValueError(
                     f"track {track.track} ({track.radius_mm:g} mm) is too small for a release "
@@ -274,6 +293,8 @@ class Movement(Part):
         for ring in self.keep_out:
             if ring.to_radius_mm <= ring.from_radius_mm:
                 raise ValueError(f"keep-out {ring.why!r}: to_radius_mm must be above from_radius_mm")
+        if sum(feature.count for feature in self.disc.features) > MOST_FEATURES:
+            raise ValueError(f"the disc's features are more than {MOST_FEATURES} holes, slots and notches")
         for feature in self.disc.features:
             _check_feature(feature, self.disc)
         _check_notches_stay_apart(self.disc.features)
@@ -325,6 +346,7 @@ def read_movement(text: str | bytes) -> Movement:
     plain, stated = read_json(text, document="movement")
     if isinstance(plain, dict) and isinstance(plain.get("tracks"), dict):
         plain = {**plain, "tracks": _listed_tracks(plain["tracks"])}
+        stated |= _worth_of_listed(stated, len(plain["tracks"]))
     movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)
     movement._stated.update({pointer: _checked_worth(pointer, value) for pointer, value in stated.items()})
     return movement
@@ -341,6 +363,13 @@ def _moved(error: DocumentError, pointer: str) -> DocumentError:
     """The error of a part, with its places as they are in the whole document."""
     problems = tuple(Problem(pointer=f"{pointer}{p.pointer}", message=p.message) for p in error.problems)
     return DocumentError(document=error.document, problems=problems)
+
+
+def _worth_of_listed(stated: Mapping[str, Json], count: int) -> dict[str, Json]:
+    """Every listed radius is worth what the worse of the two radii it lies between is worth."""
+    ends = [stated[f"/tracks/{end}_radius_mm"] for end in ("first", "last") if f"/tracks/{end}_radius_mm" in stated]
+    worst = max(ends, key=lambda end: _checked_worth("/tracks", end).plus_minus, default=None)
+    return {} if worst is None else {f"/tracks/{index}/radius_mm": worst for index in range(count)}
 
 
 def _listed_tracks(spread: Json) -> list[Json]:

@@ -7,6 +7,7 @@ number is worth is kept beside it, under the number's JSON pointer.
 
 import json
 import re
+from collections import Counter
 from collections.abc import Mapping
 from typing import Annotated, Any, Literal, TypeVar
 
@@ -29,7 +30,7 @@ class Stated(Part):
     """A number with its worth: how far it may be off, and what it rests on."""
 
     value: float
-    plus_minus: Annotated[float, Field(ge=0)] = 0.0
+    plus_minus: Annotated[float, Field(ge=0, le=1e9)] = 0.0
     basis: Literal["measured", "calculated", "assumed"] = "measured"
 
 
@@ -76,9 +77,24 @@ _NUMBER_SCHEMA = {
 }
 _TAKES_STATED = WithJsonSchema(_NUMBER_SCHEMA, mode="validation")
 
-Number = Annotated[float, BeforeValidator(_number), _TAKES_STATED]
-Positive = Annotated[float, BeforeValidator(_number), Field(gt=0), _TAKES_STATED]
-NotNegative = Annotated[float, BeforeValidator(_number), Field(ge=0), _TAKES_STATED]
+# What a number of a document may be, by its quantity: far outside any real disc, and near enough that no sum
+# of them overflows and no drawing grows without end.
+LEAST_MM = 0.001  # mm; a micrometre, finer than any cutter
+MOST_MM = 2000.0  # mm; ten times the radius of the largest shipped disc
+LEAST_S, MOST_S = 0.001, 86_400.0  # s; a millisecond to a day
+FULL_TURN_DEG = 360.0
+MOST_OF_OTHER = 1e9  # stiffness, inertia, torque, ratio in their own units
+
+_IS_NUMBER = BeforeValidator(_number)
+Length = Annotated[float, _IS_NUMBER, Field(ge=LEAST_MM, le=MOST_MM), _TAKES_STATED]
+LengthOrZero = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_MM), _TAKES_STATED]
+Offset = Annotated[float, _IS_NUMBER, Field(ge=-MOST_MM, le=MOST_MM), _TAKES_STATED]
+Time = Annotated[float, _IS_NUMBER, Field(ge=LEAST_S, le=MOST_S), _TAKES_STATED]
+TimeOrZero = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_S), _TAKES_STATED]
+Angle = Annotated[float, _IS_NUMBER, Field(ge=-FULL_TURN_DEG, le=FULL_TURN_DEG), _TAKES_STATED]
+PositiveAngle = Annotated[float, _IS_NUMBER, Field(gt=0, le=FULL_TURN_DEG), _TAKES_STATED]
+Positive = Annotated[float, _IS_NUMBER, Field(gt=0, le=MOST_OF_OTHER), _TAKES_STATED]
+NotNegative = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_OF_OTHER), _TAKES_STATED]
 Identifier = Annotated[str, BeforeValidator(_identifier), Field(pattern=r"^[a-z][a-z0-9-]{0,63}$")]
 Title = Annotated[str, Field(min_length=1, max_length=120)]
 
@@ -115,10 +131,14 @@ def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Json
 def _without_doubles(pairs: list[tuple[str, Json]]) -> dict[str, Json]:
     found = dict(pairs)
     if len(found) < len(pairs):
-        names = [name for name, _ in pairs]
-        double = next(name for name in names if names.count(name) > 1)
+        double, _ = Counter(name for name, _ in pairs).most_common(1)[0]
         raise ValueError(f"the field {double!r} is given twice")
     return found
+
+
+def _escaped(key: str) -> str:
+    """A key as it stands in a JSON pointer (RFC 6901 section 3)."""
+    return key.replace("~", "~0").replace("/", "~1")
 
 
 def _take_apart(value: Json, pointer: str, levels: int) -> tuple[Json, dict[str, Json]]:
@@ -127,7 +147,7 @@ def _take_apart(value: Json, pointer: str, levels: int) -> tuple[Json, dict[str,
     if isinstance(value, dict):
         if "value" in value and set(value) <= set(Stated.model_fields):
             return value["value"], {pointer: value}
-        pairs = [(key, *_take_apart(item, f"{pointer}/{key}", levels - 1)) for key, item in value.items()]
+        pairs = [(key, *_take_apart(item, f"{pointer}/{_escaped(key)}", levels - 1)) for key, item in value.items()]
         plain: Json = {key: item for key, item, _ in pairs}
         return plain, {place: stated for *_, found in pairs for place, stated in found.items()}
     if isinstance(value, list):
@@ -161,7 +181,7 @@ def check_document(
 
 
 def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
-    place = "".join(f"/{part}" for part in fault["loc"] if part not in union_tags)
+    place = "".join(f"/{_escaped(str(part))}" for part in fault["loc"] if part not in union_tags)
     if fault["type"] == "extra_forbidden":
         return Problem(pointer=place, message="no such field; remove it or check its spelling")
     if fault["type"] == "missing":

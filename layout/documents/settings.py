@@ -9,10 +9,14 @@ from layout.documents.reading import (
     NotNegative,
     Part,
     Positive,
+    Time,
+    TimeOrZero,
     check_document,
     read_json,
 )
 
+LEAST_FACTOR, MOST_FACTOR = 0.01, 100.0  # times as written; beyond, no tune is a tune
+Factor = Annotated[Positive, Field(ge=LEAST_FACTOR, le=MOST_FACTOR)]
 Channel = Annotated[int, Field(ge=1, le=16)]
 MOST_RULINGS = 50_000  # rulings; one for every note a tune may hold
 WIDEST_TRANSPOSITION = 48  # semitones; four octaves, more moves any tune off any comb
@@ -30,8 +34,8 @@ def _not_yet(what: str, only: object) -> Callable[[object], object]:
 class Passage(Part):
     """The part of the tune to use, [from_s, to_s), in the tune's own time as written."""
 
-    from_s: NotNegative | None = None
-    to_s: Positive | None = None
+    from_s: TimeOrZero | None = None
+    to_s: Time | None = None
 
     @model_validator(mode="after")
     def _runs_forward(self) -> Self:
@@ -47,9 +51,9 @@ class Speed(Part):
     """
 
     mode: Literal["as-written", "fit", "factor"] = "as-written"
-    factor: Positive | None = None
-    least: Positive = 0.8
-    most: Positive = 1.25
+    factor: Factor | None = None
+    least: Factor = 0.8
+    most: Factor = 1.25
 
     @model_validator(mode="after")
     def _fields_of_its_mode(self) -> Self:

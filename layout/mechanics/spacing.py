@@ -74,8 +74,8 @@ def spacing_of(movement: Movement, turning: Turning, pattern: Pattern, min_web_m
         pattern: The projections' pattern.
         min_web_mm: Least metal between two openings.
     """
-    damped = {tooth.track for tooth in movement.teeth if tooth.damped and tooth.usable}
     recovery_rad = FULL_TURN_RAD * movement.damper_recovery_s / movement.fastest_revolution_s
+    damped = movement.damped_tracks
     return Spacing(
         wheel_rad=frozen_floats(turning.engagement_arc_mm / (turning.radius_mm * np.cos(turning.row_rad))),
         damper_rad=frozen_floats(recovery_rad if track.track in damped else 0.0 for track in movement.tracks),

@@ -15,16 +15,6 @@ import math
 from layout.documents.movement import MeasuredStarWheel, Movement, StarWheel
 
 
-def step_chord_mm(tip_radius_mm: float, points: int) -> float:
-    """Chord between two neighbouring tips, 2R·sin(π/n): the engagement arc of a computed wheel."""
-    return 2 * tip_radius_mm * math.sin(math.pi / points)
-
-
-def release_arc_mm(wheel: StarWheel) -> float:
-    """How far the face is past the row line when the tooth is released: a = R·sin β_r."""
-    return wheel.tip_radius_mm * math.sin(math.radians(wheel.release_angle_deg))
-
-
 def leaving_angle_rad(wheel: StarWheel, depth_mm: float) -> float:
     """The wheel angle at which a face of this depth lets its tip go, α_e = acos((H − p)/R).
 
@@ -73,21 +63,15 @@ def touch_zone_mm(movement: Movement, track_index: int) -> tuple[float, float]:
         movement: The movement.
         track_index: Place in movement.tracks, from 0.
     """
-    track = movement.tracks[track_index]
-    wheel = movement.star_wheel
-    if track.engagement_arc_mm is not None and track.release_arc_mm is not None:
-        return _measured_zone_mm(track.engagement_arc_mm, track.release_arc_mm)
-    if isinstance(wheel, MeasuredStarWheel):
-        return _measured_zone_mm(wheel.engagement_arc_mm or 0.0, wheel.release_arc_mm or 0.0)
+    track, wheel = movement.tracks[track_index], movement.star_wheel
+    if track.engagement_arc_mm is not None or isinstance(wheel, MeasuredStarWheel):
+        engagement_mm, release_mm = movement.arcs_mm(track_index)
+        return release_mm - engagement_mm, max(release_mm, engagement_mm / 2)
     try:
         reach_mm = contact_mm(wheel, depth_band_mm(movement)[1])[1]
     except ValueError:
         reach_mm = wheel.tip_radius_mm
     return -reach_mm, reach_mm
-
-
-def _measured_zone_mm(engagement_mm: float, release_mm: float) -> tuple[float, float]:
-    return release_mm - engagement_mm, max(release_mm, engagement_mm / 2)
 
 
 def axle_slide_mm(radius_mm: float, row_y_mm: float, zone_y_mm: tuple[float, float]) -> float:

@@ -15,8 +15,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from layout.documents.movement import MeasuredStarWheel, Movement
-from layout.mechanics import star_wheel
+from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 
 FULL_TURN_RAD = 2 * math.pi
@@ -82,7 +81,7 @@ def turning_of(movement: Movement) -> Turning:
     direction = 1 if movement.turns == "clockwise" else -1
     offset_mm = movement.gantry_offset_mm
     radius_mm = frozen_floats(track.radius_mm for track in movement.tracks)
-    arcs = [_arcs_mm(movement, index) for index in range(len(movement.tracks))]
+    arcs = [movement.arcs_mm(index) for index in range(len(movement.tracks))]
     release_arc_mm = frozen_floats(release for _, release in arcs)
     return Turning(
         direction=direction,
@@ -100,12 +99,3 @@ def turning_of(movement: Movement) -> Turning:
 def _snapped_asin(sines: FloatArray) -> FloatArray:
     # Processors and libraries round the last bit of an arcsine apart; layout.json must not follow them.
     return frozen_floats(np.rint(np.arcsin(sines) / SNAP_RAD) * SNAP_RAD)
-
-
-def _arcs_mm(movement: Movement, track_index: int) -> tuple[float, float]:
-    track, wheel = movement.tracks[track_index], movement.star_wheel
-    if track.engagement_arc_mm is not None and track.release_arc_mm is not None:
-        return track.engagement_arc_mm, track.release_arc_mm
-    if isinstance(wheel, MeasuredStarWheel):
-        return wheel.engagement_arc_mm or 0.0, wheel.release_arc_mm or 0.0
-    return star_wheel.step_chord_mm(wheel.tip_radius_mm, wheel.points), star_wheel.release_arc_mm(wheel)

@@ -18,7 +18,7 @@ def play(disc: Disc) -> Plucks:
     arc·T/(2πr).
     """
     movement = disc.movement
-    damped = {tooth.track for tooth in movement.teeth if tooth.damped and tooth.usable}
+    damped = movement.damped_tracks
     arc_mm = np.array([movement.damper_arc_mm if track.track in damped else 0.0 for track in movement.tracks])
     touched_s = arc_mm * movement.revolution_s / (2 * math.pi * disc.turning.radius_mm)
     sounds_s = disc.turning.sounds_s(disc.edge_angle_rad, disc.track_index)

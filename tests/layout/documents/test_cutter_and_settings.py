@@ -40,9 +40,10 @@ def test_a_cutter_may_name_its_own_layers() -> None:
         (PRESS, {"fold": LASER.model_dump(mode="json")["fold"]}, "a punch press lances; leave fold out"),
         (PRESS, {"tools/2/edge_ahead_mm": 0.0}, "edge_ahead_mm must be minus half of footprint_length_mm"),
         (PRESS, {"tools/0/tab_depth_mm": None}, "lance tool L12 needs tab_width_mm and tab_depth_mm"),
+        (PRESS, {"tools/0/edge_ahead_mm": 1.2}, "edge_ahead_mm puts the working edge outside the footprint"),
         (PRESS, {"tools/1/tool": "L12"}, "two tools have the same name"),
-        (LASER, {"min_web_mm": 5e8}, "/min_web_mm: .*less than or equal to 50, got 500000000"),
-        (LASER, {"min_web_mm": -1}, "/min_web_mm: Input should be greater than 0, got -1"),
+        (LASER, {"min_web_mm": 60}, "/min_web_mm: .*less than or equal to 50, got 60"),
+        (LASER, {"min_web_mm": -1}, "/min_web_mm: Input should be greater than or equal to 0.001, got -1"),
     ],
 )
 def test_a_fault_in_a_cutter_names_its_place(base: Any, changes: dict[str, Any], message: str) -> None:

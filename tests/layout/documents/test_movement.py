@@ -58,7 +58,7 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
         ({"revolution_s": None, "disc": []}, r"/disc: "),
         ({"damper_arc_mm": [1]}, r"/damper_arc_mm: a number is needed, got a list"),
         ({"damper_arc_mm": {"plus_minus": 1}}, r'/damper_arc_mm: a number stated with its worth needs "value"'),
-        ({"revolution_s": 0}, r"/revolution_s: Input should be greater than 0, got 0"),
+        ({"revolution_s": 0}, r"/revolution_s: Input should be greater than or equal to 0.001, got 0"),
         ({"revolution_s": "60"}, r"/revolution_s: a number is needed, got '60'"),
         ({"colour": "red"}, r"/colour: no such field"),
         ({"title": None}, r"/title: this field is needed"),
@@ -81,6 +81,24 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
         ({"teeth/1/track": 4}, "tooth 2: there is no track 4"),
         ({"teeth/1/track": 1}, "tooth 2: track 1 already has a tooth of another pitch"),
         ({"teeth/1/pitch": "H4"}, r"/teeth/1/pitch: 'H4' is not a pitch name"),
+        ({"keep_out": [{"from_radius_mm": 1, "to_radius_mm": 2, "why": "x"}] * 33}, "/keep_out: .*at most 32 items"),
+        (
+            {
+                "disc/features": [
+                    {
+                        "purpose": "stop",
+                        "shape": "hole",
+                        "radius_mm": 40,
+                        "count": 300,
+                        "width_mm": 0.1,
+                        "length_mm": 0.1,
+                    }
+                ]
+                * 2
+            },
+            "more than 400 holes",
+        ),
+        ({"disc/a~b/c": 1}, "/disc/a~0b: no such field"),
         ({"disc/centre_hole_mm": 240}, "centre_hole_mm must be below outer_diameter_mm"),
         (
             {"keep_out": [{"from_radius_mm": 9, "to_radius_mm": 8, "why": "clamp"}]},
@@ -117,6 +135,14 @@ def test_a_feature_that_cannot_be_is_refused(feature: dict[str, Any], message: s
 def test_text_that_is_not_json_is_refused(text: str | bytes) -> None:
     with pytest.raises(DocumentError, match=r"movement: .*(not JSON|nested more than 12 deep)"):
         read_movement(text)
+
+
+def test_the_worth_of_a_range_of_radii_is_that_of_every_radius_in_it() -> None:
+    first = {"value": 50, "plus_minus": 0.1}
+
+    movement = movement_with({"tracks": {"first_radius_mm": first, "last_radius_mm": 60, "count": 3}})
+
+    assert [movement.plus_minus(f"/tracks/{index}/radius_mm") for index in range(3)] == [0.1, 0.1, 0.1]
 
 
 def test_a_field_given_twice_is_refused() -> None:

@@ -4,8 +4,8 @@ import math
 
 import pytest
 
-from layout.documents.movement import StarWheel
-from layout.mechanics.star_wheel import axle_slide_mm, contact_mm, leaving_angle_rad, release_arc_mm, step_chord_mm
+from layout.documents.movement import Movement, StarWheel
+from layout.mechanics.star_wheel import axle_slide_mm, contact_mm, leaving_angle_rad
 from tests.layout.examples import SHIPPED, movement_with
 
 WHEELS = [
@@ -25,6 +25,10 @@ def depth_for(wheel: StarWheel, share: float) -> float:
     """A depth whose leaving angle lies at this share between half a step and a whole one."""
     leaving = (math.pi / wheel.points) * (1 + share)
     return wheel.axis_depth_mm - wheel.tip_radius_mm * math.cos(leaving)
+
+
+def arcs_of(wheel: StarWheel) -> tuple[float, float]:
+    return movement_with({"star_wheel": wheel.model_dump()}).arcs_mm(0)
 
 
 class Contact:
@@ -86,7 +90,7 @@ def test_no_depth_needs_more_travel_than_the_engagement_arc(wheel: StarWheel) ->
         met_mm, left_mm = contact_mm(wheel, depth_for(wheel, share))
         travels.append(left_mm - met_mm)
 
-    chord_mm = step_chord_mm(wheel.tip_radius_mm, wheel.points)
+    chord_mm = arcs_of(wheel)[0]
     assert max(travels) <= chord_mm
     assert travels[0] == pytest.approx(chord_mm, abs=1e-6)
     assert travels == sorted(travels, reverse=True)
@@ -97,13 +101,15 @@ def test_no_depth_needs_more_travel_than_the_engagement_arc(wheel: StarWheel) ->
     ("points", "radius_mm", "chord_mm"), [(5, 5, 5.878), (6, 5, 5.0), (6, 3.2, 3.2), (8, 6, 4.592), (12, 6, 3.106)]
 )
 def test_the_chord_between_tips(points: int, radius_mm: float, chord_mm: float) -> None:
-    assert step_chord_mm(radius_mm, points) == pytest.approx(chord_mm, abs=5e-4)
+    wheel = WHEELS[0].model_copy(update={"points": points, "tip_radius_mm": radius_mm})
+
+    assert arcs_of(wheel)[0] == pytest.approx(chord_mm, abs=5e-4)
 
 
 # R sin beta: 3.2 sin 14 deg = 0.774, 3.5 sin 12 deg = 0.728
 @pytest.mark.parametrize(("movement", "arc_mm"), [(SHIPPED[0], 0.774), (SHIPPED[1], 0.728)])
-def test_the_release_arc_of_the_shipped_movements(movement: object, arc_mm: float) -> None:
-    assert release_arc_mm(movement.star_wheel) == pytest.approx(arc_mm, abs=5e-4)  # type: ignore[attr-defined] - both computed
+def test_the_release_arc_of_the_shipped_movements(movement: Movement, arc_mm: float) -> None:
+    assert movement.arcs_mm(0)[1] == pytest.approx(arc_mm, abs=5e-4)
 
 
 def test_a_face_that_does_not_reach_the_tips_has_no_leaving_angle() -> None:

@@ -1,0 +1,63 @@
+"""Every number of the shipped documents, set in turn to the edge of what a double can be."""
+
+import json
+from collections.abc import Iterator
+from typing import Any
+
+import pytest
+
+from layout import walk
+from layout.documents import Settings, read_cutter, read_movement
+from layout.errors import DocumentError
+from service.demo.compose import demo_tune
+from tests.layout.examples import LASER, PRESS, SHIPPED
+
+EXTREMES = (1e300, -1e300, 1e-300, 1e12, 0)
+LONGEST_LISTS = 2  # of a list's items the first two stand for all
+
+
+def numbers_in(value: Any, path: tuple[Any, ...] = ()) -> Iterator[tuple[Any, ...]]:
+    """The path of every number of a document; of a list's items only the first two."""
+    if isinstance(value, dict):
+        for key, item in value.items():
+            yield from numbers_in(item, (*path, key))
+    elif isinstance(value, list):
+        for place, item in enumerate(value[:LONGEST_LISTS]):
+            yield from numbers_in(item, (*path, place))
+    elif isinstance(value, int | float) and not isinstance(value, bool):
+        yield path
+
+
+def changed(document: Any, path: tuple[Any, ...], value: float) -> str:
+    copy = json.loads(json.dumps(document))
+    spot = copy
+    for step in path[:-1]:
+        spot = spot[step]
+    spot[path[-1]] = value
+    return json.dumps(copy)
+
+
+CASES = [
+    (movement, cutter, of, path)
+    for movement, cutter in ((SHIPPED[0], LASER), (SHIPPED[2], PRESS), (SHIPPED[1], LASER))
+    for of, document in (("movement", movement), ("cutter", cutter))
+    for path in numbers_in(document.model_dump(mode="json", exclude_none=True))
+]
+
+
+@pytest.mark.parametrize(
+    ("movement", "cutter", "of", "path"), CASES, ids=lambda value: getattr(value, "id", str(value))
+)
+def test_an_extreme_number_is_refused_or_laid_out(movement: Any, cutter: Any, of: str, path: tuple[Any, ...]) -> None:
+    for extreme in EXTREMES:
+        texts = {
+            "movement": json.dumps(movement.model_dump(mode="json", exclude_none=True)),
+            "cutter": json.dumps(cutter.model_dump(mode="json", exclude_none=True)),
+        }
+        texts[of] = changed(json.loads(texts[of]), path, extreme)
+        try:
+            documents = read_movement(texts["movement"]), read_cutter(texts["cutter"])
+        except DocumentError:
+            continue
+        files = walk.files_of(walk.lay_out(demo_tune(), *documents, Settings()), not_good="a test")
+        assert "NaN" not in files["layout.json"].decode()
