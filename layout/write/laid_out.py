@@ -8,6 +8,8 @@ from layout.place.disc import Disc
 from layout.play.plucks import Plucks
 from layout.read.score import Score
 
+NOT_GOOD = "NOT GOOD TO CUT"
+
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class LaidOut:

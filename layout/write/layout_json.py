@@ -5,6 +5,8 @@ import math
 from typing import Any
 
 from layout.check.finding import Finding, Place
+from layout.documents.pitch import pitch_of
+from layout.read.score import Score
 from layout.version import ENGINE_VERSION
 from layout.write.laid_out import LaidOut
 
@@ -12,22 +14,32 @@ FORMAT = "discwright-layout/1"
 Record = dict[str, Any]  # JSON: what it holds is said by layout_record
 
 
-def write_layout_json(laid_out: LaidOut) -> bytes:
-    """The layout as UTF-8 JSON, one projection, note left out or finding to a line.
+def write_layout_json(laid_out: LaidOut, *, despite_findings: str | None) -> bytes:
+    """The layout as UTF-8 JSON, one note, projection, note left out or finding to a line.
+
+    Args:
+        laid_out: The layout.
+        despite_findings: The reason for which a disc with an error is cut all the same; None where none is.
 
     Raises:
         ValueError: A number of the layout is not finite: a fault of the program, never of an input.
     """
-    lines = ",\n".join(f"{_json(name)}: {_value(value)}" for name, value in layout_record(laid_out).items())
+    record = layout_record(laid_out, despite_findings=despite_findings)
+    lines = ",\n".join(f"{_json(name)}: {_value(value)}" for name, value in record.items())
     # JSON writes half a surrogate pair as \udXXX, which is also what this error handler writes.
     return f"{{\n{lines}\n}}\n".encode("utf-8", errors="backslashreplace")
 
 
-def layout_record(laid_out: LaidOut) -> Record:
+def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
     """The layout in plain dictionaries and lists, in the order it is written.
 
     Angles are working edges' on the disc seen from the label side, never mirrored, in [0, 360);
-    times run from the start of the music on the disc. Numbers are unrounded.
+    times run from the start of the music on the disc, but for the notes read, which keep the tune's
+    own times and pitches. Numbers are unrounded.
+
+    Args:
+        laid_out: The layout.
+        despite_findings: The reason for which a disc with an error is cut all the same; None where none is.
     """
     arrangement, movement, cutter = laid_out.arrangement, laid_out.disc.movement, laid_out.disc.cutter
     score, worth = laid_out.score, arrangement.worth
@@ -36,6 +48,7 @@ def layout_record(laid_out: LaidOut) -> Record:
         "title": laid_out.title,
         "fingerprint": laid_out.fingerprint,
         "good_to_cut": laid_out.good_to_cut,
+        "despite_findings": despite_findings,
         "movement": {"id": movement.id, "revision": movement.revision},
         "cutter": {"id": cutter.id},
         "engine_version": ENGINE_VERSION,
@@ -54,6 +67,7 @@ def layout_record(laid_out: LaidOut) -> Record:
         "speed_factor": arrangement.speed_factor,
         "from_s": arrangement.from_s,
         "worth": {"kept": worth.kept, "bound": worth.bound, "proved": worth.proved},
+        "notes": _notes(score),
         "projections": _projections(laid_out),
         "left_out": [{"note": left.note, "reason": left.reason} for left in arrangement.left_out],
         "findings": [finding_record(finding) for finding in laid_out.findings],
@@ -80,6 +94,19 @@ def _place(at: Place) -> Record:
     return {name: value for name, value in indices.items() if value} | {
         name: value for name, value in numbers.items() if value is not None
     }
+
+
+def _notes(score: Score) -> list[Record]:
+    rows = zip(
+        score.onset_s.tolist(),
+        score.duration_s.tolist(),
+        map(pitch_of, score.pitch.tolist()),
+        score.velocity.tolist(),
+        score.channel.tolist(),
+        strict=True,
+    )
+    names = ("onset_s", "duration_s", "pitch", "velocity", "channel")
+    return [{"note": note} | dict(zip(names, row, strict=True)) for note, row in enumerate(rows)]
 
 
 def _projections(laid_out: LaidOut) -> list[Record]:

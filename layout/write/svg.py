@@ -1,11 +1,11 @@
 """The picture of a disc: what is cut, how it looks after forming, and what was found."""
 
 from layout.cut.plan import CutPlan
-from layout.write.laid_out import LaidOut
+from layout.write.laid_out import NOT_GOOD, LaidOut
 from layout.write.svg_disc import layer_groups, row_of_star_wheels, turning_arrow, working_edges
 from layout.write.svg_facts import facts, legend
 from layout.write.svg_findings import findings_list, markers, shown_findings
-from layout.write.svg_header import NOT_GOOD, corner_words, header, header_height_mm, is_good, level_counts
+from layout.write.svg_header import corner_words, header, header_height_mm, is_good, level_counts
 from layout.write.svg_page import describe, new_drawing, page_for
 
 _ABOVE, _BELOW, _BETWEEN = 4.0, 4.5, 2.2  # gaps in hundredths of the page's width

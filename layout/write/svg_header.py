@@ -8,7 +8,7 @@ from svgwrite.shapes import Circle, Rect
 
 from layout.check.finding import Level
 from layout.cut.plan import CutPlan
-from layout.write.laid_out import LaidOut
+from layout.write.laid_out import NOT_GOOD, LaidOut
 from layout.write.svg_disc import turning_as_drawn
 from layout.write.svg_page import Face, Page, short, shortened, words
 from layout.write.svg_style import (
@@ -23,7 +23,6 @@ from layout.write.svg_style import (
     WORD_GREY,
 )
 
-NOT_GOOD = "NOT GOOD TO CUT"
 _REASON_SIZE = 2.2
 _BAND, _GOOD_LINE, _HEAD = 8.2, 4.6, 10.2  # heights in hundredths of the page's width
 

@@ -40,6 +40,15 @@ def test_a_disc_without_projections_gives_the_header_alone() -> None:
     assert write_hits(plan_by_hand(EMPTY_DISC), EMPTY_DISC).decode() == f"{HEADER}\r\n"
 
 
+@pytest.mark.parametrize("disc", [THREE_LANCES, EMPTY_DISC], ids=["projections", "none"])
+def test_a_disc_cut_despite_an_error_says_so_in_every_row(disc: Disc) -> None:
+    good, marked = (write_hits(plan_by_hand(disc, not_good=reason), disc).decode() for reason in (None, "trial"))
+
+    assert marked.splitlines()[0] == f"{HEADER},not_good"
+    assert [row["not_good"] for row in rows_of(marked.encode())] == ["NOT GOOD TO CUT"] * disc.projection_count
+    assert [line.rpartition(",")[0] for line in marked.splitlines()] == good.splitlines()
+
+
 def test_a_press_strikes_beside_the_working_edge_and_mirrored() -> None:
     disc = disc_of(MOSSBROOK, PRESS, [(1, 0.0)])
 

@@ -29,7 +29,7 @@ for movement, cutter in ((examples.FERNHOLLOW, examples.LASER), (examples.MOSSBR
         write_dxf(plan.record, cutter),
         write_svg(plan, laid_out),
         write_hits(plan, disc),
-        write_layout_json(laid_out),
+        write_layout_json(laid_out, despite_findings=plan.not_good),
     )
     print(json.dumps([hashlib.sha256(file).hexdigest() for file in files]))
 """
