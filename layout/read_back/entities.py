@@ -27,6 +27,7 @@ from layout.read_back.contour import Contour
 from layout.read_back.limits import JOINED_WITHIN_MM, MOST_CUTS, MOST_VERTICES
 
 CUT_LAYERS = ("SLITS", "SLOTS", "HITS", "HOLES", "RIM")
+RECORD_LAYERS = ("AFTER_FORMING", "FOLDS", "TRACKS")  # a drawing that holds any of these is only for reading
 _FULL_TURN_DEG = 360.0
 _ONE_PIECE = 2  # vertices of a chain of one line or arc
 _WIDEST_BULGE = 1e6  # an arc that lacks 0.0002 degrees of a whole circle; more is no arc
@@ -42,6 +43,7 @@ class CutDrawing:
         contours: Polylines, circles and joined lines and arcs, in drawing order by layer.
         hits_mm: Shape (n, 2). Points of the layer for hits.
         strangers: (our layer name, entity type) of what cannot be read, with its count.
+        record_layers: Our names of the layers of a record that hold entities, with their count.
         other_layers: Layers of the drawing that are none of the cutter's, with their count of entities.
         mended: Whether the file was damaged and had to be mended while reading.
     """
@@ -49,6 +51,7 @@ class CutDrawing:
     contours: tuple[Contour, ...]
     hits_mm: FloatArray
     strangers: dict[tuple[str, str], int]
+    record_layers: dict[str, int]
     other_layers: dict[str, int]
     mended: bool
 
@@ -74,6 +77,8 @@ def cut_drawing_of(document: Drawing, cutter: Cutter, *, farthest_mm: float, men
             collecting.other_layers[name] += 1
         elif layer in CUT_LAYERS:
             collecting.add(layer, entity)
+        elif layer in RECORD_LAYERS:
+            collecting.record_layers[layer] += 1
     for layer in CUT_LAYERS:
         collecting.end_chain(layer)
     return collecting.drawing(-1 if cutter.drawn_from == "star-side" else 1, mended=mended)
@@ -85,6 +90,7 @@ class _Collecting:
     contours: list[Contour] = field(default_factory=list)
     hits_mm: list[tuple[float, float]] = field(default_factory=list)
     strangers: Counter[tuple[str, str]] = field(default_factory=Counter)
+    record_layers: Counter[str] = field(default_factory=Counter)
     other_layers: Counter[str] = field(default_factory=Counter)
     chains: dict[str, list[Vertex]] = field(default_factory=dict)
 
@@ -141,6 +147,7 @@ class _Collecting:
             contours=tuple(contours),
             hits_mm=frozen_floats(np.array(self.hits_mm).reshape(-1, 2) * side),
             strangers=dict(self.strangers),
+            record_layers=dict(self.record_layers),
             other_layers=dict(self.other_layers),
             mended=mended,
         )

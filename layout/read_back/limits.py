@@ -5,6 +5,8 @@ MOST_CUTS = 10_000  # contours and points; several times the fullest disc of 67 
 MOST_VERTICES = 20_000  # vertices of one contour; a rim drawn in straight pieces of 0.1 mm has 13,000
 MOST_TRACED = 1_000_000  # points that trace holes and rim; 1,000 rims of the largest disc
 FARTHEST_MM = 2_000.0  # mm; what lies farther off was not drawn in mm, unless the movement's own disc reaches so far
+COMMENT_WIDTH = 200  # characters; where a long comment in the head of our files goes on in the next line
+MOST_REASON = 250  # characters; the longest reason our files carry, and enough of anybody's
 
 REPEATED_WITHIN_MM = 5e-5  # mm; nothing a cutter can tell from nothing, and far above the rounding of a file
 STRAIGHT_WITHIN_MM = 1e-5  # mm; a vertex this near a straight line was put in by a program, not by a person

@@ -2,7 +2,6 @@
 
 import numpy as np
 
-from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import frozen_floats, frozen_ints
@@ -10,18 +9,19 @@ from layout.mechanics.projection import Pattern, pattern_of
 from layout.mechanics.turning import turning_of
 from layout.place.disc import Disc
 from layout.read_back.blank import compare_blank
-from layout.read_back.entities import CUT_LAYERS, CutDrawing
 from layout.read_back.file import read_drawing
 from layout.read_back.limits import FARTHEST_MM
 from layout.read_back.projections import Wanted, edges_of
 from layout.read_back.reading import Reading
+from layout.read_back.whole_file import findings_on_the_file
 
 
 def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     """The disc that a drawing would give, from what is cut alone.
 
-    Only the cutter's layers for slits, slots, hits, holes and the rim are read; marks, fold lines
-    and openings after forming are not looked at. Accepted on them are polylines, circles, points
+    Only the cutter's layers for slits, slots, hits, holes and the rim are read; marks are not looked
+    at. Tracks, fold lines and openings after forming make the drawing a record, which is never cut,
+    and a head that says NOT GOOD TO CUT is believed; both are errors. Accepted on them are polylines, circles, points
     (hits), and lines and arcs that follow one another; vertices may start anywhere and run either
     way. The absolute place of every working edge is recovered from the shape of its cut.
 
@@ -32,8 +32,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
 
     Returns:
         The disc, without what is out of shape, off its track or drawn a second time, and a finding
-        for each of those and for what of the blank differs. A drawing without cuts gives a disc
-        without projections, and findings for the missing blank.
+        for each of those, for what of the blank differs, and for a file that is not to be cut. A
+        drawing without cuts gives a disc without projections, and findings for the missing blank.
 
     Raises:
         DrawingReadError: The bytes are no such file.
@@ -49,7 +49,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
         track_index=frozen_ints(edges.track_index),
         edge_angle_rad=frozen_floats(edges.edge_angle_rad),
     )
-    return Reading(disc=disc, findings=(*_of_the_file(drawing, cutter), *findings, *compare_blank(drawing, movement)))
+    of_the_file = findings_on_the_file(dxf, drawing, cutter)
+    return Reading(disc=disc, findings=(*of_the_file, *findings, *compare_blank(drawing, movement)))
 
 
 def _farthest_mm(movement: Movement, pattern: Pattern) -> float:
@@ -59,35 +60,3 @@ def _farthest_mm(movement: Movement, pattern: Pattern) -> float:
     """
     tracks_mm = movement.tracks[-1].radius_mm + float(np.abs(pattern.opening.points_mm).sum(axis=1).max())
     return max(FARTHEST_MM, 2 * tracks_mm, movement.disc.outer_diameter_mm)
-
-
-def _of_the_file(drawing: CutDrawing, cutter: Cutter) -> list[Finding]:
-    """What the file holds beside the cuts that can be read."""
-    findings = []
-    if drawing.mended:
-        message = "the file is damaged and was read as far as it goes; cuts may be missing"
-        findings.append(_unknown(Level.WARNING, message, "save the drawing anew from the program that made it"))
-    read = ", ".join(cutter.layer(ours).name for ours in CUT_LAYERS)
-    for name, count in drawing.other_layers.items():
-        message = f"layer {name} is none of this cutter's, and its entities ({count}) are not read; read are {read}"
-        findings.append(_unknown(Level.WARNING, message, "check that nothing on it is to be cut"))
-    for (ours, kind), count in drawing.strangers.items():
-        message = (
-            f"layer {cutter.layer(ours).name} has entities ({count}) of type {kind}, which cannot be read back; "
-            f"{'points are' if ours == 'HITS' else 'polylines, circles, lines and arcs are'}"
-        )
-        findings.append(_unknown(Level.ERROR, message, "convert or explode them in the program that made them"))
-    return findings
-
-
-def _unknown(level: Level, message: str, remedy: str) -> Finding:
-    return Finding(
-        code=Code.UNKNOWN_CUT,
-        level=level,
-        message=message,
-        measured=None,
-        limit=None,
-        unit="",
-        at=Place(),
-        remedy=remedy,
-    )
