@@ -10,7 +10,7 @@ from layout.check.blank import (
     webs_to_the_centre_hole_hold,
     webs_to_the_rim_hold,
 )
-from layout.check.cutter import cutter_can_form, press_has_the_tool, slits_are_wide_enough
+from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_has_the_tool, slits_are_wide_enough
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.music import music_fits_the_turn, something_plays
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
@@ -34,6 +34,7 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     cutter_can_form,
     press_has_the_tool,
     slits_are_wide_enough,
+    holes_are_large_enough,
     star_clears_the_disc,
     star_is_reached,
     step_ends_at_the_next_point,
@@ -59,15 +60,15 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
 def check(disc: Disc, arrangement: Arrangement | None = None) -> tuple[Finding, ...]:
     """Every finding on a disc, in the order of the checks, by place within each.
 
-    A disc without projections has no findings of its own; its arrangement has: nothing plays.
+    A disc without projections has one finding: nothing plays.
 
     Args:
         disc: The disc.
         arrangement: What it was placed from; None for a disc read back from a drawing.
     """
-    of_music: list[Finding] = []
+    of_music = something_plays(arrangement, disc)
     if arrangement is not None:
-        of_music = something_plays(arrangement, disc) + music_fits_the_turn(arrangement, disc)
+        of_music += music_fits_the_turn(arrangement, disc)
     if not disc.projection_count:
         return tuple(of_music)
     return tuple(of_music + [finding for one_check in DISC_CHECKS for finding in one_check(disc)])

@@ -2,6 +2,7 @@
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM
+from layout.documents.cutter import Cutter
 from layout.mechanics.projection import fitting_tool
 from layout.place.disc import Disc
 
@@ -51,25 +52,41 @@ def _cannot(code: Code, message: str) -> Finding:
 
 
 def slits_are_wide_enough(disc: Disc) -> list[Finding]:
-    """Channels and slots must not be narrower than the cutter's least slot."""
-    cutter, projection = disc.cutter, disc.movement.projection
+    """Channels, their reliefs, and slots must not be narrower than the cutter's least slot."""
+    cutter, projection, fold = disc.cutter, disc.movement.projection, disc.cutter.fold
+    widths_mm: list[tuple[str, float | None]] = []
     if projection.kind == "slot":
-        what, width_mm = "slot", projection.width_mm
-    elif cutter.fold is not None and cutter.fold.slit_width_mm is not None:
-        what, width_mm = "slit", cutter.fold.slit_width_mm
-    else:
-        return []
-    if width_mm >= cutter.min_slot_mm - GRAIN_MM:
-        return []
+        widths_mm = [("slot (width_mm)", projection.width_mm)]
+    elif fold is not None and fold.slit == "channel":
+        relief_mm = fold.relief_width_mm if fold.relief_mm > 0 else None
+        widths_mm = [("slit (slit_width_mm)", fold.slit_width_mm), ("relief (relief_width_mm)", relief_mm)]
     return [
-        Finding(
-            code=Code.SLIT_TOO_NARROW,
-            level=Level.ERROR,
-            message=f"The {what} is {width_mm:.3f} mm wide; {cutter.id} cuts none below {cutter.min_slot_mm:.3f} mm.",
-            measured=width_mm,
-            limit=cutter.min_slot_mm,
-            unit="mm",
-            at=Place(),
-            remedy="Widen the slit (slit_width_mm) or slot (width_mm), or choose a cutter that cuts finer.",
-        )
+        _too_small(Code.SLIT_TOO_NARROW, what, width_mm, cutter)
+        for what, width_mm in widths_mm
+        if width_mm is not None and width_mm < cutter.min_slot_mm - GRAIN_MM
     ]
+
+
+def holes_are_large_enough(disc: Disc) -> list[Finding]:
+    """The centre hole and the blank's features must not be smaller than the cutter's least slot."""
+    blank, cutter = disc.movement.disc, disc.cutter
+    sizes_mm = [("centre hole", blank.centre_hole_mm)]
+    sizes_mm += [(f"{one.purpose} {one.shape}", min(one.width_mm, one.length_mm)) for one in blank.features]
+    return [
+        _too_small(Code.HOLE_TOO_SMALL, what, size_mm, cutter)
+        for what, size_mm in sizes_mm
+        if size_mm < cutter.min_slot_mm - GRAIN_MM
+    ]
+
+
+def _too_small(code: Code, what: str, size_mm: float, cutter: Cutter) -> Finding:
+    return Finding(
+        code=code,
+        level=Level.ERROR,
+        message=f"The {what} is {size_mm:.3f} mm wide; {cutter.id} cuts none below {cutter.min_slot_mm:.3f} mm.",
+        measured=size_mm,
+        limit=cutter.min_slot_mm,
+        unit="mm",
+        at=Place(),
+        remedy="Widen it in the movement or cutter document, or choose a cutter that cuts finer.",
+    )

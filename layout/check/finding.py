@@ -39,6 +39,7 @@ class Code(StrEnum):
     CANNOT_FORM = "cannot-form"
     NO_TOOL = "no-tool"
     SLIT_TOO_NARROW = "slit-too-narrow"
+    HOLE_TOO_SMALL = "hole-too-small"
     MARGIN_UNSURE = "margin-unsure"
     # read back from a drawing
     UNKNOWN_CUT = "unknown-cut"
@@ -48,6 +49,8 @@ class Code(StrEnum):
     BLANK_DIFFERS = "blank-differs"
     NOT_A_CUTTING_FILE = "not-a-cutting-file"
     MARKED_NOT_GOOD = "marked-not-good"
+    OTHER_SIDE = "other-side"
+    SIDE_NOT_SHOWN = "side-not-shown"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

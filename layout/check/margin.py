@@ -1,6 +1,6 @@
 """A number held against its limit, and what the number is worth.
 
-A condition is met while its margin is at or above zero. The margin rests on numbers of the
+A condition is met while its margin is above zero, or at it where the trade allows. The margin rests on numbers of the
 movement that may have been measured; where they may be off by more than the margin, met or not,
 that is said.
 """
@@ -26,8 +26,10 @@ class Condition:
         measured: The number found.
         limit: The number it is held against.
         unit: Of both.
-        margin: At or above zero where the condition holds, in `unit`.
-        rests_on: JSON pointers of the movement's numbers the margin rests on.
+        margin: Above zero where the condition holds, in `unit`.
+        holds_at_limit: Whether a margin of exactly zero holds too.
+        rests_on: JSON pointers of the movement's numbers the margin rests on, all in `unit`.
+        also_unsure: What numbers in other units may shift the margin by, in `unit`.
         at: Where.
         remedy: What a person can do.
     """
@@ -42,12 +44,14 @@ class Condition:
     rests_on: tuple[str, ...]
     at: Place
     remedy: str
+    holds_at_limit: bool = True
+    also_unsure: float = 0.0
 
 
 def judged(condition: Condition, movement: Movement) -> list[Finding]:
     """An error where the condition fails, a warning where it holds by less than its numbers are worth."""
-    unsure = sum(movement.plus_minus(pointer) for pointer in condition.rests_on)
-    fails = condition.margin < 0
+    unsure = condition.also_unsure + sum(movement.plus_minus(pointer) for pointer in condition.rests_on)
+    fails = condition.margin < 0 or (condition.margin == 0 and not condition.holds_at_limit)
     if not fails and condition.margin >= unsure:
         return []
     worth = f"less than the ±{unsure:.3f} {condition.unit} of the numbers it stands on"

@@ -1,16 +1,20 @@
 """Checks on what the disc plays of the tune."""
 
+import math
+
 from layout.arrange.arrangement import Arrangement
 from layout.check.finding import Code, Finding, Level, Place
 from layout.place.disc import Disc
 
+_EMPTY = {True: "the drawing has no projections", False: "the tune holds no notes but percussion"}
 
-def something_plays(arrangement: Arrangement, disc: Disc) -> list[Finding]:
-    """An error where the comb plays not one note of the tune."""
-    if len(arrangement.track_index):
+
+def something_plays(arrangement: Arrangement | None, disc: Disc) -> list[Finding]:
+    """An error where the disc plays not one note."""
+    if disc.projection_count:
         return []
-    reasons = sorted({note.reason for note in arrangement.left_out})
-    why = f"every note is left out ({', '.join(reasons)})" if reasons else "the tune holds no notes but percussion"
+    reasons = sorted({note.reason for note in arrangement.left_out}) if arrangement is not None else []
+    why = f"every note is left out ({', '.join(reasons)})" if reasons else _EMPTY[arrangement is None]
     return [
         Finding(
             code=Code.NOTHING_TO_PLAY,
@@ -32,7 +36,8 @@ def music_fits_the_turn(arrangement: Arrangement, disc: Disc) -> list[Finding]:
     free_s = disc.turning.free_turn_s
     if not past:
         return []
-    fits_at = arrangement.speed_factor * arrangement.length_s / free_s
+    # Rounded up: rounded to nearest, the factor named would not fit half of the time.
+    fits_at = math.ceil(arrangement.speed_factor * arrangement.length_s / free_s * 1000 - 1e-6) / 1000
     return [
         Finding(
             code=Code.MUSIC_TOO_LONG,

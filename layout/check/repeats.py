@@ -5,12 +5,14 @@ import math
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS
+from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged
 from layout.check.star_wheel import used_tracks
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.star_wheel import touch_zone_mm
 from layout.mechanics.turning import FULL_TURN_RAD
 from layout.place.disc import Disc
+
+APART = "Leave one of the two out, or put it on another track of the same pitch."
 
 
 def star_wheels_keep_up(disc: Disc) -> list[Finding]:
@@ -18,19 +20,38 @@ def star_wheels_keep_up(disc: Disc) -> list[Finding]:
     findings: list[Finding] = []
     for index in used_tracks(disc):
         reach_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
-        limit_mm = float(disc.turning.engagement_arc_mm[index])
+        worth_mm = sum(disc.movement.plus_minus(pointer) for pointer in _arc_pointers(index))
+        sure_mm = float(disc.turning.engagement_arc_mm[index]) + worth_mm
         for one, two, apart_rad in _neighbours(disc, index):
-            travel_mm = apart_rad * reach_mm
-            if travel_mm >= limit_mm - GRAIN_MM:
+            if apart_rad * reach_mm >= sure_mm:  # nearly all: not worth the words
                 continue
-            apart_s = apart_rad * disc.turning.revolution_s / FULL_TURN_RAD
-            least_s = limit_mm / reach_mm * disc.turning.revolution_s / FULL_TURN_RAD
-            message = (
-                f"Two plucks on track {index + 1} are {travel_mm:.3f} mm ({apart_s:.3f} s) apart; its star wheel "
-                f"needs {limit_mm:.3f} mm ({least_s:.3f} s) to make its step."
-            )
-            findings.append(_repeat(disc, Code.REPEAT_TOO_SOON, message, (one, two), (travel_mm, limit_mm, "mm")))
+            findings += judged(_step_apart(disc, index, (one, two), apart_rad * reach_mm), disc.movement)
     return findings[:MOST_FINDINGS]
+
+
+def _step_apart(disc: Disc, index: int, pair: tuple[int, int], travel_mm: float) -> Condition:
+    limit_mm = float(disc.turning.engagement_arc_mm[index])
+    around_mm = FULL_TURN_RAD * float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
+    per_mm_s = disc.turning.revolution_s / around_mm
+    return Condition(
+        code=Code.REPEAT_TOO_SOON,
+        says=(
+            f"Two plucks on track {index + 1} are {travel_mm:.3f} mm ({travel_mm * per_mm_s:.3f} s) apart; its star "
+            f"wheel needs {limit_mm:.3f} mm ({limit_mm * per_mm_s:.3f} s) to make its step"
+        ),
+        so="the second is lost, or the first released too early",
+        measured=travel_mm,
+        limit=limit_mm,
+        unit="mm",
+        margin=travel_mm - limit_mm + GRAIN_MM,
+        rests_on=_arc_pointers(index),
+        at=_at(disc, pair),
+        remedy=APART,
+    )
+
+
+def _arc_pointers(index: int) -> tuple[str, str]:
+    return f"/tracks/{index}/engagement_arc_mm", "/star_wheel/engagement_arc_mm"
 
 
 def dampers_recover(disc: Disc) -> list[Finding]:
@@ -151,5 +172,5 @@ def _repeat(disc: Disc, code: Code, message: str, pair: tuple[int, int], numbers
         limit=limit,
         unit=unit,
         at=_at(disc, pair),
-        remedy="Leave one of the two out, or put it on another track of the same pitch.",
+        remedy=APART,
     )

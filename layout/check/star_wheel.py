@@ -5,6 +5,7 @@ that states measured arcs instead of sizes has nothing for the first seven to ch
 """
 
 import math
+from itertools import product
 
 from layout.check.finding import Code, Finding, Place
 from layout.check.margin import Condition, judged
@@ -42,6 +43,7 @@ def star_clears_the_disc(disc: Disc) -> list[Finding]:
         margin=gap_mm - flatness_mm,
         rests_on=(_H, _R, _FLAT),
         at=Place(),
+        holds_at_limit=False,
         remedy="Set the star's axis deeper (axis_depth_mm), or use a flatter sheet (flatness_mm).",
     )
     return judged(condition, disc.movement)
@@ -67,6 +69,7 @@ def star_is_reached(disc: Disc) -> list[Finding]:
         margin=wheel.tip_radius_mm - gap_mm,
         rests_on=(_H, _R, _P, _BAND, _FLAT),
         at=Place(),
+        holds_at_limit=False,
         remedy="Make the projection deeper (depth_mm), or hold its depth and the sheet's flatness closer.",
     )
     return judged(condition, disc.movement)
@@ -92,6 +95,7 @@ def step_reaches_the_next_point(disc: Disc) -> list[Finding]:
         unit="deg",
         margin=leaving_deg - half_deg,
         rests_on=(),
+        also_unsure=_leaving_unsure_deg(disc, low_mm),
         at=Place(),
         remedy="Make the projection deeper (depth_mm), or hold its depth closer (depth_plus_minus_mm).",
     )
@@ -118,7 +122,9 @@ def step_ends_at_the_next_point(disc: Disc) -> list[Finding]:
         unit="deg",
         margin=step_deg - leaving_deg,
         rests_on=(),
+        also_unsure=_leaving_unsure_deg(disc, high_mm),
         at=Place(),
+        holds_at_limit=False,
         remedy="Make the projection shallower (depth_mm), or hold its depth closer (depth_plus_minus_mm).",
     )
     return judged(condition, disc.movement)
@@ -129,6 +135,24 @@ def _leaving_deg(wheel: StarWheel, depth_mm: float) -> float | None:
         return math.degrees(formulas.leaving_angle_rad(wheel, depth_mm))
     except ValueError:
         return None
+
+
+def _leaving_unsure_deg(disc: Disc, depth_mm: float) -> float:
+    """How far the leaving angle may be off, the worst of every way the wheel's and the depth's numbers may be."""
+    wheel, movement = disc.movement.star_wheel, disc.movement
+    if not isinstance(wheel, StarWheel):
+        return 0.0
+    gap_off_mm = sum(movement.plus_minus(pointer) for pointer in (_H, _P, _BAND, _FLAT))
+    tip_off_mm = movement.plus_minus(_R)
+    angle_deg = _leaving_deg(wheel, depth_mm)
+    worst_deg = 0.0
+    for gap_mm, tip_mm in product((-gap_off_mm, gap_off_mm), (-tip_off_mm, tip_off_mm)):
+        moved = wheel.model_copy(update={"tip_radius_mm": wheel.tip_radius_mm + tip_mm})
+        moved_deg = _leaving_deg(moved, depth_mm + gap_mm)
+        if angle_deg is None or moved_deg is None:
+            return HALF_TURN_DEG
+        worst_deg = max(worst_deg, abs(moved_deg - angle_deg))
+    return worst_deg
 
 
 def tip_clears_the_bend(disc: Disc) -> list[Finding]:
@@ -175,6 +199,7 @@ def depth_stays_off_the_root(disc: Disc) -> list[Finding]:
         margin=gap_mm - wheel.root_radius_mm,
         rests_on=(_H, _ROOT, _P, _BAND, _FLAT),
         at=Place(),
+        holds_at_limit=False,
         remedy="Make the projection shallower (depth_mm), or hold its depth and the sheet's flatness closer.",
     )
     return judged(condition, disc.movement)
@@ -205,7 +230,9 @@ def tooth_is_released(disc: Disc) -> list[Finding]:
         unit="deg",
         margin=min(least_deg - release_deg, release_deg - earliest_deg),
         rests_on=("/star_wheel/release_angle_deg",),
+        also_unsure=max(_leaving_unsure_deg(disc, low_mm), _leaving_unsure_deg(disc, high_mm)),
         at=Place(),
+        holds_at_limit=False,
         remedy="Set comb and star wheel so that the tooth is released nearer the row, or make the projection deeper.",
     )
     return judged(condition, disc.movement)

@@ -22,9 +22,20 @@ def test_a_repeat_faster_than_the_star_wheel_is_found() -> None:
     assert finding.measured == pytest.approx(2.617994, abs=1e-6)  # 0.5 s * 5.235988
     assert finding.limit == pytest.approx(3.2)
     assert finding.message == (
-        "Two plucks on track 1 are 2.618 mm (0.500 s) apart; its star wheel needs 3.200 mm (0.611 s) to make its step."
+        "Two plucks on track 1 are 2.618 mm (0.500 s) apart; its star wheel needs 3.200 mm (0.611 s) to make its step: "
+        "the second is lost, or the first released too early."
     )
     assert finding.at.sounds_s == pytest.approx(10.0)
+
+
+def test_a_repeat_that_holds_by_less_than_the_measured_arc_is_worth_is_a_warning() -> None:
+    # 0.65 s * 5.235988 = 3.4034 mm; the arc of 3.2 mm was measured to 0.3 mm
+    arcs = {"tracks/0/engagement_arc_mm": {"value": 3.2, "plus_minus": 0.3}, "tracks/0/release_arc_mm": 0.0}
+
+    [finding] = star_wheels_keep_up(disc_of(movement_with(arcs), [(1, 10.0), (1, 10.65)]))
+
+    assert finding.code is Code.MARGIN_UNSURE
+    assert "It holds by 0.203 mm, less than the ±0.300 mm" in finding.message
 
 
 @pytest.mark.parametrize("later_s", [LEAST_S + 1e-5, 5.0])
@@ -165,6 +176,17 @@ def test_music_longer_than_the_turn_is_an_error_with_its_length() -> None:
     assert "one turn of plain-3 has 50.00 s for it, so 1 note falls past the turn." in finding.message
     # 49.0 s is the last onset the test's arrangement has; its turn has 50 s
     assert "it fits the turn at 0.980 times as written (settings: passage, speed)" in finding.remedy
+
+
+@pytest.mark.parametrize("length_s", [50.001, 58.7501, 77.7777])
+def test_the_factor_named_makes_the_music_fit(length_s: float) -> None:
+    arrangement = arrangement_of([(1, length_s)], (LeftOut(note=1, reason="past-the-turn"),))
+
+    [finding] = music_fits_the_turn(arrangement, disc_of(PLAIN, [(1, 0.0)]))
+
+    named = float(finding.remedy.partition("fits the turn at ")[2].partition(" times")[0])
+    assert length_s / named <= 50.0
+    assert length_s / (named - 0.001) > 50.0
 
 
 def test_music_that_fits_passes() -> None:

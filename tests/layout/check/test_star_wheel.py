@@ -5,7 +5,7 @@ from typing import Any
 import pytest
 
 from layout.check import Code, Finding, Level, check
-from layout.check.cutter import cutter_can_form, press_has_the_tool, slits_are_wide_enough
+from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_has_the_tool, slits_are_wide_enough
 from layout.check.star_wheel import (
     depth_stays_off_the_root,
     neighbours_are_not_fouled,
@@ -217,12 +217,75 @@ def test_the_shipped_cutters_can_make_the_shipped_movements(movement: Movement, 
     assert cutter_can_form(disc) + press_has_the_tool(disc) + slits_are_wide_enough(disc) == []
 
 
-@pytest.mark.parametrize(("movement", "what"), [(SHIPPED[0], "slit is 0.420"), (SHIPPED[2], "slot is 1.300")])
+@pytest.mark.parametrize(
+    ("movement", "what"), [(SHIPPED[0], "slit (slit_width_mm) is 0.420"), (SHIPPED[2], "slot (width_mm) is 1.300")]
+)
 def test_a_slit_or_slot_below_the_cutters_least_is_found(movement: Movement, what: str) -> None:
     [finding] = slits_are_wide_enough(disc_of(movement, [(1, 10.0)], cutter_with({"min_slot_mm": 1.5})))
 
     assert finding.code is Code.SLIT_TOO_NARROW
     assert what in finding.message
+
+
+def test_a_relief_below_the_cutters_least_is_found() -> None:
+    disc = disc_of(PLAIN, PLUCKS, cutter_with({"fold/relief_width_mm": 0.05}))
+
+    [finding] = slits_are_wide_enough(disc)
+
+    assert finding.message == "The relief (relief_width_mm) is 0.050 mm wide; fibre-laser cuts none below 0.400 mm."
+
+
+@pytest.mark.parametrize(
+    ("changes", "message"),
+    [
+        ({"disc/centre_hole_mm": 0.3}, "The centre hole is 0.300 mm wide"),
+        (
+            {"disc/features": [{"purpose": "stop", "shape": "slot", "radius_mm": 20, "width_mm": 3, "length_mm": 0.2}]},
+            "The stop slot is 0.200 mm wide",
+        ),
+    ],
+)
+def test_a_hole_below_the_cutters_least_is_found(changes: dict[str, Any], message: str) -> None:
+    [finding] = holes_are_large_enough(disc_of(movement_with(changes), PLUCKS))
+
+    assert finding.code is Code.HOLE_TOO_SMALL
+    assert finding.message.startswith(message)
+
+
+def test_holes_of_the_cutters_least_pass() -> None:
+    assert holes_are_large_enough(disc_of(movement_with({"disc/centre_hole_mm": 0.4}), PLUCKS)) == []
+
+
+# Round numbers at the very end of a condition that the trade excludes there.
+@pytest.mark.parametrize(
+    ("changes", "code"),
+    [
+        # H - p = 4 - 1 = 3 = R, no band
+        ({"axis_depth_mm": 4, "tip_radius_mm": 3}, Code.STAR_NOT_REACHED),
+        # the axis as deep as the tips are long
+        ({"axis_depth_mm": 3, "tip_radius_mm": 3}, Code.STAR_HITS_DISC),
+        # H - p = 2 = root
+        ({"axis_depth_mm": 3, "tip_radius_mm": 2.5, "root_radius_mm": 2}, Code.DEPTH_AT_ROOT),
+        # acos(2/4) = 60 deg = a whole step of six points (2/4 is exact, and so is its arccosine's degree to 1e-14)
+        ({"axis_depth_mm": 3, "tip_radius_mm": 4}, Code.STEP_TOO_LONG),
+    ],
+)
+def test_a_wheel_at_the_very_end_of_a_condition_fails_it(changes: dict[str, float], code: Code) -> None:
+    sizes = {"projection/depth_mm": 1, "projection/depth_plus_minus_mm": 0, "disc/flatness_mm": 0}
+    movement = movement_with(sizes | {f"star_wheel/{name}": value for name, value in changes.items()})
+
+    assert code in [finding.code for finding in check(disc_of(movement, PLUCKS))]
+
+
+def test_an_angle_says_when_the_lengths_behind_it_are_worth_less_than_its_margin() -> None:
+    # at the least depth 1.26 the leaving angle is acos(2.49/3.2) = 38.91 deg, 8.91 over half a step;
+    # an axis 0.5 deeper gives acos(2.99/3.2) = 20.88 deg: 18.03 less
+    movement = movement_with({"star_wheel/axis_depth_mm": {"value": 3.75, "plus_minus": 0.5}})
+
+    [finding] = step_reaches_the_next_point(disc_of(movement, PLUCKS))
+
+    assert finding.code is Code.MARGIN_UNSURE
+    assert "It holds by 8.911 deg, less than the ±18.0" in finding.message
 
 
 def test_every_finding_has_a_place_or_speaks_of_the_whole_movement() -> None:

@@ -245,5 +245,8 @@ def test_tracks_on_the_disc_pass() -> None:
 
 @pytest.mark.parametrize("cutter", [LASER, PRESS, cutter_with({"fold": None})], ids=["laser", "press", "no fold"])
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
-def test_a_disc_without_projections_has_no_findings(movement: Movement, cutter: Cutter) -> None:
-    assert check(disc_of(movement, [], cutter)) == ()
+def test_a_disc_without_projections_has_one_finding(movement: Movement, cutter: Cutter) -> None:
+    [finding] = check(disc_of(movement, [], cutter))
+
+    assert finding.code is Code.NOTHING_TO_PLAY
+    assert "the drawing has no projections" in finding.message
