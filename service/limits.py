@@ -20,7 +20,7 @@ class Limits:
     )
     form_parts: int = limit(8, "parts", "most parts of a multipart body: four are known, a few more get a clear error")
     drawing_bytes: int = limit(
-        32 * MIB, "bytes", "largest drawing that is checked: many times a full disc of the largest movement"
+        10 * MIB, "bytes", "largest drawing that is checked: a disc of 20,000 projections; reading one takes a minute"
     )
     reason_characters: int = limit(
         200, "characters", "longest despite_findings reason: it is lettered on the disc and stands in every file"

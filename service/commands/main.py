@@ -2,6 +2,7 @@
 
 import argparse
 import io
+import logging
 import os
 import sys
 from collections.abc import Callable, Sequence
@@ -54,6 +55,7 @@ def main(
     for stream in (sys.stdout, sys.stderr):
         if isinstance(stream, io.TextIOWrapper):
             stream.reconfigure(errors="backslashreplace")  # a title may hold letters the terminal does not know
+    logging.getLogger("ezdxf").setLevel(logging.CRITICAL)  # its remarks about a damaged file; ours is one line
     limits = Limits()
     try:
         asked = _parser().parse_args(argv)

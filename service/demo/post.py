@@ -21,6 +21,7 @@ from typing import Any
 import mido
 
 ANSWER_WITHIN_S = 120.0  # as long as service/up lets a worker compute
+CUTTING_FILES = ("disc.dxf", "hits.csv")  # what the service keeps back while an error stands
 OUTSIDE = "outside-passage"  # the reason of notes the demo did not ask for
 INTERRUPTED = 130  # common practice: 128 + the number of SIGINT
 
@@ -177,8 +178,13 @@ def make_disc(address: str, movement_id: str, tune: Tune, say: Callable[[str], N
 
 
 def keep(files: dict[str, bytes], folder: Path) -> None:
-    """Write the files into a folder, made where it does not exist; files of other names stay."""
+    """Write the files into a folder, made where it does not exist; files of other names stay.
+
+    Cutting files of an earlier demo go: kept back now, they would be cut for another disc.
+    """
     folder.mkdir(parents=True, exist_ok=True)
+    for name in CUTTING_FILES:
+        (folder / name).unlink(missing_ok=True)
     for name, content in files.items():
         (folder / Path(name).name).write_bytes(content)
 

@@ -142,6 +142,14 @@ def test_the_report_counts_what_is_kept_and_why_the_rest_is_left_out() -> None:
     ]
 
 
+def test_cutting_files_of_an_earlier_demo_do_not_stay_beside_a_disc_that_keeps_them_back(tmp_path: Path) -> None:
+    post.keep({"disc.dxf": b"old", "hits.csv": b"old", "disc.svg": b"old"}, tmp_path)
+
+    post.keep({"disc.svg": b"new"}, tmp_path)
+
+    assert {path.name: path.read_bytes() for path in tmp_path.iterdir()} == {"disc.svg": b"new"}
+
+
 def test_the_report_counts_notes_outside_the_passage_apart() -> None:
     outside = [{"note": 8, "reason": "outside-passage"}, {"note": 9, "reason": "outside-passage"}]
 
