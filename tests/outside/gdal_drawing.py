@@ -52,15 +52,21 @@ def _strike_mm(movement: Movement, cutter: Cutter) -> float:
 
 
 def _middle_of_slit_mm(movement: Movement, cutter: Cutter) -> float:
-    """How far ahead of the working edge the middle of the channel's bounding box lies (folded behind)."""
+    """How far ahead of the working edge the middle of the slit's bounding box lies."""
     fold, thickness_mm = cutter.fold, movement.disc.thickness_mm
     assert fold is not None
-    assert fold.slit_width_mm is not None
     inside_mm = fold.inside_radius_mm
     k = 0.65 + 0.5 * math.log10(inside_mm / thickness_mm)  # DIN 6935
     blank_mm = math.pi / 2 * (inside_mm + k * thickness_mm / 2) + (movement.projection.depth_mm or 0.0) - inside_mm
-    front_mm, back_mm = inside_mm + fold.relief_mm, inside_mm - blank_mm - fold.slit_width_mm
-    return (front_mm + back_mm) / 2
+    # from the tangent line: back into the relief, and out past the free end to the far side of the slit;
+    # the line of an open slit runs half a kerf inside both
+    if fold.slit == "channel":
+        back_mm, out_mm = fold.relief_mm, blank_mm + (fold.slit_width_mm or 0.0)
+    else:
+        back_mm, out_mm = fold.relief_mm - cutter.kerf_mm / 2, blank_mm + cutter.kerf_mm / 2
+    if fold.fold_side == "behind":
+        return inside_mm + (back_mm - out_mm) / 2
+    return -(inside_mm + thickness_mm) + (out_mm - back_mm) / 2
 
 
 def _pluck(place: complex, ahead_mm: float, movement: Movement) -> tuple[int, float]:
