@@ -146,7 +146,7 @@ def _twice(edge: _Edge) -> Finding:
         limit=SAME_CUT_MM,
         unit="mm",
         at=edge.at,
-        remedy="cut the second out of the drawing",
+        remedy="delete the second from the drawing",
     )
 
 
@@ -171,5 +171,5 @@ def _unknown(message: str, radius_mm: float, angle_rad: float) -> Finding:
         limit=None,
         unit="",
         at=Place(radius_mm=radius_mm, angle_deg=math.degrees(angle_rad) % 360),
-        remedy="cut it out of the drawing, or add it to the movement",
+        remedy="delete it from the drawing, or add it to the movement",
     )

@@ -25,6 +25,15 @@ class Contour:
     bulge_ratio: FloatArray
     closed: bool
 
+    def mirrored(self) -> "Contour":
+        """The same seen from the other side, (x, −y); arcs turn the other way."""
+        return Contour(
+            layer=self.layer,
+            points_mm=frozen_floats(self.points_mm * (1.0, -1.0)),
+            bulge_ratio=frozen_floats(-self.bulge_ratio),
+            closed=self.closed,
+        )
+
     def tidied(self) -> "Contour":
         """The same without repeated vertices and vertices within a straight piece; closed if its ends meet."""
         points, bulges, closed = self.points_mm, self.bulge_ratio, self.closed

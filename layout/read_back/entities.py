@@ -7,7 +7,7 @@ on the cutter's own layers for what is cut. Everything else on those layers is a
 import math
 from collections import Counter
 from collections.abc import Iterable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from ezdxf.document import Drawing
@@ -55,6 +55,14 @@ class CutDrawing:
     other_layers: dict[str, int]
     mended: bool
 
+    def mirrored(self) -> "CutDrawing":
+        """The same cuts seen from the other side."""
+        return replace(
+            self,
+            contours=tuple(contour.mirrored() for contour in self.contours),
+            hits_mm=frozen_floats(self.hits_mm * (1.0, -1.0)),
+        )
+
 
 def cut_drawing_of(document: Drawing, cutter: Cutter, *, farthest_mm: float, mended: bool) -> CutDrawing:
     """What is cut in a document's model space.
@@ -81,7 +89,8 @@ def cut_drawing_of(document: Drawing, cutter: Cutter, *, farthest_mm: float, men
             collecting.record_layers[layer] += 1
     for layer in CUT_LAYERS:
         collecting.end_chain(layer)
-    return collecting.drawing(-1 if cutter.drawn_from == "star-side" else 1, mended=mended)
+    as_drawn = collecting.drawing(mended=mended)
+    return as_drawn.mirrored() if cutter.drawn_from == "star-side" else as_drawn
 
 
 @dataclass(slots=True)
@@ -132,20 +141,10 @@ class _Collecting:
             meets = len(chain) > _ONE_PIECE and math.dist(chain[0][:2], chain[-1][:2]) <= JOINED_WITHIN_MM
             self.contours.append(_contour(layer, chain[:-1] if meets else chain, closed=meets))
 
-    def drawing(self, mirror: int, *, mended: bool) -> CutDrawing:
-        side = np.array([1.0, mirror])
-        contours = (
-            Contour(
-                layer=contour.layer,
-                points_mm=frozen_floats(contour.points_mm * side),
-                bulge_ratio=frozen_floats(contour.bulge_ratio * mirror),
-                closed=contour.closed,
-            ).tidied()
-            for contour in self.contours
-        )
+    def drawing(self, *, mended: bool) -> CutDrawing:
         return CutDrawing(
-            contours=tuple(contours),
-            hits_mm=frozen_floats(np.array(self.hits_mm).reshape(-1, 2) * side),
+            contours=tuple(contour.tidied() for contour in self.contours),
+            hits_mm=frozen_floats(np.array(self.hits_mm).reshape(-1, 2)),
             strangers=dict(self.strangers),
             record_layers=dict(self.record_layers),
             other_layers=dict(self.other_layers),

@@ -18,3 +18,4 @@ SQUARE_WITHIN_DEG = 0.2  # degrees; 0.007 mm over a projection 2 mm long
 TRACK_WITHIN_MM = 0.02  # mm; as for shapes
 BLANK_WITHIN_MM = 0.02  # mm; as for shapes
 SAME_CUT_MM = 0.01  # mm; two cuts nearer than this are one cut drawn twice
+CLEARLY_OUTSIDE_S = 0.01  # s; more than a cut within these tolerances may be early or late

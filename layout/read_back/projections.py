@@ -22,7 +22,7 @@ from layout.read_back.limits import (
 )
 
 _WRONG_WAY_RAD = math.pi / 2
-_REDRAW = "draw it as this cutter's pattern, or cut it out of the drawing"
+_REDRAW = "draw it as this cutter's pattern, or delete it from the drawing"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -31,6 +31,21 @@ class Edges:
 
     track_index: IntArray
     edge_angle_rad: FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Found:
+    """What the layers for projections hold.
+
+    Attributes:
+        edges: The projections.
+        findings: What is none, or lies wrong.
+        shows_side: Whether the outlines tell the label side from the star side; hits do not.
+    """
+
+    edges: Edges
+    findings: list[Finding]
+    shows_side: bool
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -60,19 +75,21 @@ class Wanted:
         return contour.tidied()
 
 
-def edges_of(drawing: CutDrawing, wanted: Wanted) -> tuple[Edges, list[Finding]]:
+def projections_of(drawing: CutDrawing, wanted: Wanted) -> Found:
     """The working edges of a drawing, and what on the projections' layers is none or lies wrong.
 
     What is out of shape, off its track or drawn a second time is left out.
     """
     contours = [contour for contour in drawing.contours if contour.layer in ("SLITS", "SLOTS")]
     like, findings = _sorted_by_shape(contours, wanted)
-    origins = []
+    origins, shows_side = [], False
     pattern = wanted.contour
     if like and pattern is not None:
         frames = frames_of(like, pattern, wanted.turning.direction)
-        fits, faults = _judged(frames, wanted)
-        findings += faults
+        fits = _fits(frames)
+        fits_mirrored = _fits(frames_of([contour.mirrored() for contour in like], pattern, wanted.turning.direction))
+        shows_side = bool((fits != fits_mirrored).any())
+        findings += _faults(frames, fits, fits_mirrored, wanted)
         origins.append(np.column_stack([frames.radius_mm, frames.angle_rad])[fits])
     if len(drawing.hits_mm) and wanted.layer == "HITS":
         places = drawing.hits_mm[:, 0] + 1j * drawing.hits_mm[:, 1]
@@ -81,7 +98,7 @@ def edges_of(drawing: CutDrawing, wanted: Wanted) -> tuple[Edges, list[Finding]]
     elif len(drawing.hits_mm):
         findings += [_stray_hit(x, y, wanted.cutter) for x, y in drawing.hits_mm.tolist()]
     edges, more = _on_tracks(np.concatenate([np.zeros((0, 2)), *origins]), wanted.turning)
-    return edges, findings + more
+    return Found(edges=edges, findings=findings + more, shows_side=shows_side)
 
 
 def _sorted_by_shape(contours: list[Contour], wanted: Wanted) -> tuple[list[Contour], list[Finding]]:
@@ -138,50 +155,59 @@ def _stray_hit(x_mm: float, y_mm: float, cutter: Cutter) -> Finding:
         limit=None,
         unit="",
         at=_place(math.hypot(x_mm, y_mm), math.atan2(y_mm, x_mm)),
-        remedy="choose the press this was drawn for, or cut the hit out of the drawing",
+        remedy="choose the press this was drawn for, or delete the hit from the drawing",
     )
 
 
-def _judged(frames: Frames, wanted: Wanted) -> tuple[BoolArray, list[Finding]]:
-    """Which contours have the pattern's shape and stand square to their radius, and a finding for each other."""
-    skew_deg = np.degrees(frames.skew_rad)
-    misshapen = frames.residual_mm > SHAPE_WITHIN_MM
-    wrong_way = ~misshapen & (np.abs(frames.skew_rad) > _WRONG_WAY_RAD)
-    skewed = ~misshapen & ~wrong_way & (np.abs(skew_deg) > SQUARE_WITHIN_DEG)
-    findings = [
-        _out_of_shape(
-            f"a projection's outline is up to {frames.residual_mm[i]:.3f} mm out of shape; "
-            f"the limit is {SHAPE_WITHIN_MM:g} mm",
-            (float(frames.residual_mm[i]), SHAPE_WITHIN_MM, "mm"),
-            _place(float(frames.radius_mm[i]), float(frames.angle_rad[i])),
+def _fits(frames: Frames) -> BoolArray:
+    """Which contours have the pattern's shape and stand square to their radius, facing the way the disc turns."""
+    square = np.abs(frames.skew_rad) <= math.radians(SQUARE_WITHIN_DEG)
+    return np.asarray((frames.residual_mm <= SHAPE_WITHIN_MM) & square)
+
+
+def _faults(frames: Frames, fits: BoolArray, fits_mirrored: BoolArray, wanted: Wanted) -> list[Finding]:
+    """A finding for every contour that does not fit; one for all that would if most of the drawing were mirrored."""
+    findings, single = [], ~fits
+    seen_through = ~fits & fits_mirrored
+    if 2 * seen_through.sum() > len(fits):
+        single &= ~seen_through
+        first = int(np.flatnonzero(seen_through)[0])
+        evidence = f"{seen_through.sum()} of {len(fits)} projections fit only when mirrored"
+        at = _place(float(frames.radius_mm[first]), float(frames.angle_rad[first]))
+        findings.append(other_side(f"{evidence}; the drawing seems to show", wanted.cutter, at))
+    return findings + [_fault(frames, int(place)) for place in np.flatnonzero(single)]
+
+
+def other_side(evidence: str, cutter: Cutter, at: Place) -> Finding:
+    """The finding that a drawing is mirrored; the evidence ends with how sure that is, up to "show"."""
+    return Finding(
+        code=Code.OTHER_SIDE,
+        level=Level.ERROR,
+        message=f"{evidence} the other side, not the {cutter.drawn_from.replace('-', ' ')}",
+        measured=None,
+        limit=None,
+        unit="",
+        at=at,
+        remedy="choose the cutter and the movement this was drawn for, or mirror the drawing",
+    )
+
+
+def _fault(frames: Frames, place: int) -> Finding:
+    residual_mm, skew_rad = float(frames.residual_mm[place]), abs(float(frames.skew_rad[place]))
+    at = _place(float(frames.radius_mm[place]), float(frames.angle_rad[place]))
+    if residual_mm > SHAPE_WITHIN_MM:
+        message = (
+            f"a projection's outline is up to {residual_mm:.3f} mm out of shape; the limit is {SHAPE_WITHIN_MM:g} mm"
         )
-        for i in np.flatnonzero(misshapen)
-    ]
-    findings += [
-        _out_of_shape(
-            f"a projection stands {abs(skew_deg[i]):.2f} degrees out of square to its radius; "
-            f"the limit is {SQUARE_WITHIN_DEG:g} degrees",
-            (abs(float(skew_deg[i])), SQUARE_WITHIN_DEG, "deg"),
-            _place(float(frames.radius_mm[i]), float(frames.angle_rad[i])),
+        return _out_of_shape(message, (residual_mm, SHAPE_WITHIN_MM, "mm"), at)
+    if skew_rad > _WRONG_WAY_RAD:
+        message = "a projection faces against the way the disc turns"
+    else:
+        message = (
+            f"a projection stands {math.degrees(skew_rad):.2f} degrees out of square to its radius; "
+            f"the limit is {SQUARE_WITHIN_DEG:g} degrees"
         )
-        for i in np.flatnonzero(skewed)
-    ]
-    if wrong_way.any():
-        first = int(np.flatnonzero(wrong_way)[0])
-        findings.append(
-            Finding(
-                code=Code.OUT_OF_SHAPE,
-                level=Level.ERROR,
-                message=f"{wrong_way.sum()} of {len(wrong_way)} projections face against the way the disc turns; "
-                f"the drawing seems to show the other side, not the {wanted.cutter.drawn_from.replace('-', ' ')}",
-                measured=None,
-                limit=None,
-                unit="",
-                at=_place(float(frames.radius_mm[first]), float(frames.angle_rad[first])),
-                remedy="choose the cutter this was drawn for, or mirror the drawing",
-            )
-        )
-    return ~(misshapen | wrong_way | skewed), findings
+    return _out_of_shape(message, (math.degrees(skew_rad), SQUARE_WITHIN_DEG, "deg"), at)
 
 
 def _out_of_shape(message: str, measured: tuple[float, float, str], at: Place) -> Finding:
@@ -254,5 +280,5 @@ def _cut_twice(track_index: int, angle_rad: float, turning: Turning) -> Finding:
         limit=SAME_CUT_MM,
         unit="mm",
         at=_place(float(turning.radius_mm[track_index]), angle_rad, (track_index + 1,)),
-        remedy="cut the second out of the drawing",
+        remedy="delete the second from the drawing",
     )

@@ -11,8 +11,9 @@ from layout.place.disc import Disc
 from layout.read_back.blank import compare_blank
 from layout.read_back.file import read_drawing
 from layout.read_back.limits import FARTHEST_MM
-from layout.read_back.projections import Wanted, edges_of
+from layout.read_back.projections import Wanted, projections_of
 from layout.read_back.reading import Reading
+from layout.read_back.side import findings_on_the_side
 from layout.read_back.whole_file import findings_on_the_file
 
 
@@ -23,7 +24,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     at. Tracks, fold lines and openings after forming make the drawing a record, which is never cut,
     and a head that says NOT GOOD TO CUT is believed; both are errors. Accepted on them are polylines, circles, points
     (hits), and lines and arcs that follow one another; vertices may start anywhere and run either
-    way. The absolute place of every working edge is recovered from the shape of its cut.
+    way. The absolute place of every working edge is recovered from the shape of its cut. A drawing
+    that fits only when mirrored is told once, by its outlines, its blank or its music.
 
     Args:
         dxf: An ASCII DXF file in millimetres, its origin at the disc's centre.
@@ -40,17 +42,20 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     """
     turning, pattern = turning_of(movement), pattern_of(movement, cutter)
     drawing = read_drawing(dxf, cutter, farthest_mm=_farthest_mm(movement, pattern))
-    edges, findings = edges_of(drawing, Wanted(cutter=cutter, turning=turning, pattern=pattern))
+    wanted = Wanted(cutter=cutter, turning=turning, pattern=pattern)
+    found = projections_of(drawing, wanted)
     disc = Disc(
         movement=movement,
         cutter=cutter,
         turning=turning,
         pattern=pattern,
-        track_index=frozen_ints(edges.track_index),
-        edge_angle_rad=frozen_floats(edges.edge_angle_rad),
+        track_index=frozen_ints(found.edges.track_index),
+        edge_angle_rad=frozen_floats(found.edges.edge_angle_rad),
     )
     of_the_file = findings_on_the_file(dxf, drawing, cutter)
-    return Reading(disc=disc, findings=(*of_the_file, *findings, *compare_blank(drawing, movement)))
+    differs = compare_blank(drawing, movement)
+    of_the_side = [] if found.shows_side else findings_on_the_side(drawing, found.edges, differs, wanted, movement)
+    return Reading(disc=disc, findings=(*of_the_file, *of_the_side, *found.findings, *differs))
 
 
 def _farthest_mm(movement: Movement, pattern: Pattern) -> float:
