@@ -5,12 +5,13 @@ from dataclasses import dataclass, replace
 import shapely
 
 from layout.cut.blank import holes, rim
-from layout.cut.marks import index_mark, lettering
+from layout.cut.inscribing import lettering
+from layout.cut.marks import index_mark
 from layout.cut.mirroring import mirrored, mirrored_points_mm
 from layout.cut.plan import CutPlan, Drawing, Entity, Outlines
 from layout.cut.projections import cut_projections, cutting_order, formed_projections, struck_at_mm
 from layout.cut.room import Rooms
-from layout.cut.wording import Words, head_lines, lettering_lines, warnings_of
+from layout.cut.wording import Words, head_lines, inscriptions
 from layout.mechanics.arrays import IntArray
 from layout.place.disc import Disc
 
@@ -79,8 +80,7 @@ def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
 def _drawing(marking: _Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
     disc = marking.disc
     rim_mm = disc.movement.disc.outer_diameter_mm / 2
-    choices, warnings = lettering_lines(disc, words), warnings_of(words)
-    letters = lettering(marking.rooms, choices, warnings=warnings, rim_mm=rim_mm)
+    letters = lettering(marking.rooms, inscriptions(disc, words), rim_mm=rim_mm)
     marks = () if marking.mark is None else (marking.mark,)
     drawn = [_as_drawn(entity, marking.mirror) for entity in (*marks, *entities)]
     return Drawing(

@@ -1,15 +1,16 @@
 """What the drawings say: the lines at the head of the file, and the lettering on the disc."""
 
-import unicodedata
 from dataclasses import dataclass
 
+from layout.cut.plain_letters import is_mostly_lost, plain_ascii
 from layout.documents.cutter import Cutter
 from layout.place.disc import Disc
 from layout.version import ENGINE_VERSION
 
 NOT_GOOD = "NOT GOOD TO CUT"
 RECORD = "RECORD - NOT FOR CUTTING"
-MOST_LETTERS = 32  # characters on the disc; a longer title would take the room of every other line
+# Characters of a title on the disc: a longer one is hard to read at a glance; what does not fit is tried shorter.
+MOST_LETTERS = (32, 24, 16)
 MOST_COMMENT = 250  # characters; DXF reference: strings of releases before 2000 end at 255 bytes
 
 
@@ -30,19 +31,26 @@ class Words:
     is_record: bool
 
 
-def plain_ascii(text: str) -> str:
-    """The text in printable ASCII on one line: accents dropped, what has no like "?", blanks made single.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Inscription:
+    """One line to engrave.
 
-    Old DXF readers and the engraving font know nothing else.
+    Attributes:
+        forms: What it says, in printable ASCII; the fullest form first, then ever shorter ones.
+        row: Where it stands among the others, read from the top.
+        is_warning: Whether it may even stand among openings, rather than be missing.
     """
-    apart = unicodedata.normalize("NFKD", text)
-    letters = (letter for letter in apart if not unicodedata.combining(letter))
-    plain = "".join(letter if " " <= letter <= "~" else " " if letter.isspace() else "?" for letter in letters)
-    return " ".join(plain.split())
+
+    forms: tuple[str, ...]
+    row: int
+    is_warning: bool = False
 
 
 def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
-    """Comments for the file's head: the warnings first, every line in plain ASCII."""
+    """Comments for the file's head: the warnings first, every line in plain ASCII.
+
+    A title that is mostly lost in ASCII is kept as it is: the writer spells its characters out.
+    """
     movement, cutter = disc.movement, disc.cutter
     lines = [
         *([RECORD] if words.is_record else []),
@@ -57,27 +65,34 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
         *_how_it_is_drawn(disc),
         "index mark: at disc angle 0; its barb points the way the disc turns",
     ]
-    return tuple(plain_ascii(line)[:MOST_COMMENT] for line in lines)
+    kept = f"title: {words.title}" if is_mostly_lost(words.title) else None
+    return tuple((line if line == kept else plain_ascii(line))[:MOST_COMMENT] for line in lines)
 
 
-def warnings_of(words: Words) -> tuple[str, ...]:
-    """The lines that must not be missing, if at all possible."""
-    return (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
+def inscriptions(disc: Disc, words: Words) -> tuple[Inscription, ...]:
+    """The lines to engrave, the ones that must stay longest first: warnings, side, movement, fingerprint, title.
+
+    A title that is mostly lost in ASCII is left out; so is one of blanks.
+    """
+    movement, title = disc.movement, plain_ascii(words.title)
+    warnings = (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
+    lines = [Inscription(forms=(text,), row=row, is_warning=True) for row, text in enumerate(warnings)]
+    below = len(warnings)
+    lines += [
+        Inscription(forms=(_side(disc.cutter).upper(),), row=below + 2),
+        Inscription(
+            forms=(_shortened(plain_ascii(f"{movement.id} rev {movement.revision}"), MOST_LETTERS[0]),), row=below + 1
+        ),
+        Inscription(forms=(words.fingerprint,), row=below + 3),
+    ]
+    if title and not is_mostly_lost(words.title):
+        forms = dict.fromkeys(_shortened(title, most) for most in MOST_LETTERS)
+        lines.append(Inscription(forms=tuple(forms), row=below))
+    return tuple(lines)
 
 
-def lettering_lines(disc: Disc, words: Words) -> tuple[tuple[str, ...], ...]:
-    """The lines to engrave, in the choices to try: first all, then ever fewer; the warnings stay longest."""
-    warnings = warnings_of(words)
-    movement = disc.movement
-    telling = [words.title, f"{movement.id} rev {movement.revision}", _side(disc.cutter).upper()]
-    choices = [(*warnings, *telling[:kept], words.fingerprint) for kept in range(len(telling), -1, -1)]
-    if warnings:
-        choices.append(warnings)
-    return tuple(tuple(line for text in lines if (line := _shortened(plain_ascii(text)))) for lines in choices)
-
-
-def _shortened(text: str) -> str:
-    return text if len(text) <= MOST_LETTERS else text[: MOST_LETTERS - 3].rstrip() + "..."
+def _shortened(text: str, most: int) -> str:
+    return text if len(text) <= most else text[: most - 3].rstrip() + "..."
 
 
 def _side(cutter: Cutter) -> str:

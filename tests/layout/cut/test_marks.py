@@ -81,6 +81,64 @@ def test_an_index_mark_keeps_clear_of_a_notch_at_its_own_angle() -> None:
     assert mark.points_mm[0, :, 0].max() < 48.98
 
 
+def length_mm(mark: Outlines) -> float:
+    return float(np.hypot(*(mark.points_mm[0, 1] - mark.points_mm[0, 0])))
+
+
+@pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_index_mark_is_large_enough_to_be_seen_in_a_picture_of_the_whole_disc(
+    movement: Movement, cutter: Cutter
+) -> None:
+    mark = index_mark(plan_of(disc_of(movement, [(1, 1.0)], cutter)).disc)
+
+    # 1.5 % of the diameter is 6 pixels of 400; under 2 mm it is missed on the disc itself
+    assert length_mm(mark) >= max(0.015 * movement.disc.outer_diameter_mm, 2.0)
+
+
+def test_the_index_mark_is_smaller_where_there_is_no_room_for_a_larger_one() -> None:
+    # From the hole to the openings of track 1 are 48.98 - 46 = 2.98 mm, less 0.5 on either side: 1.98.
+    narrow = movement_with({"disc/outer_diameter_mm": 203, "disc/centre_hole_mm": 92})
+
+    assert length_mm(index_mark(plan_of(disc_of(narrow, [])).disc)) == pytest.approx(1.5)
+
+
+@pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
+def test_a_small_disc_with_a_long_title_and_a_warning_still_says_all(cutter: Cutter) -> None:
+    side = "STAR SIDE" if cutter is PRESS else "LABEL SIDE"
+
+    plan = plan_of(disc_of(SHIPPED[2], [(1, 1.0)], cutter), title="The Ballad of the Miller " * 4, not_good="trial")
+
+    expected = {"NOT GOOD TO CUT", side, "tarnlight-17 rev 1", FINGERPRINT, "The Ballad of the Miller The..."}
+    assert set(texts(plan.disc)) == expected
+    assert set(texts(plan.record)) == expected | {"RECORD - NOT FOR CUTTING"}
+
+
+def test_a_title_is_shortened_further_before_anything_else_is_left_out() -> None:
+    # Inside there is no room, and outside the openings, which reach to 50.87 mm, only a band up to the rim.
+    movement = movement_with(CROWDED | {"disc/outer_diameter_mm": 109})
+
+    plan = plan_of(disc_of(movement, [(1, 1.0)]), title="The Ballad of the Miller and his Sons")
+
+    assert set(texts(plan.disc)) == {"LABEL SIDE", "plain-3 rev 1", FINGERPRINT, "The Ballad of..."}
+
+
+def test_letters_along_the_rim_are_turned_but_never_mirrored() -> None:
+    hidden = [{"from_radius_mm": 0, "to_radius_mm": 20, "why": "clamp"}]
+    tarnlight = Movement.model_validate(SHIPPED[2].model_dump() | {"keep_out": hidden})
+
+    plan = plan_of(disc_of(tarnlight, [], STAR_SIDE_LASER), title="LLLLLLLLLLLL", not_good="a trial piece")
+
+    # L is drawn down, then to the right: (0, -1) x (1, 0) = +1, as long as it is only turned.
+    assert len(lettering_of(plan.record)) == 6
+    [line] = [line for line in lettering_of(plan.record) if line.text.startswith("L")]
+    tall, bar = (stroke[-1] - stroke[0] for stroke in line.strokes_mm[:2])
+    assert tall[0] * bar[1] - tall[1] * bar[0] > 0
+    assert abs(tall[0]) > 0.1  # so it is one that is turned
+    outwards = line.strokes_mm[0][0]
+    assert np.dot(-tall, outwards) * outwards[1] > 0  # tops to the rim above the centre, to the centre below it
+
+
 def test_lettering_says_title_movement_side_and_fingerprint() -> None:
     plan = plan_of(disc_of(PLAIN, [(1, 1.0)]))
 
@@ -121,14 +179,14 @@ def test_lettering_and_mark_keep_out_of_places_that_a_clamp_hides() -> None:
     assert not strokes_of(plan.disc).intersects(shapely.Point(0, 0).buffer(49))
 
 
-def test_where_a_clamp_hides_all_room_there_is_still_the_least_that_must_be_said() -> None:
+def test_where_a_clamp_hides_all_room_there_is_still_all_that_must_be_said() -> None:
     clamped = movement_with({"keep_out": [{"from_radius_mm": 0, "to_radius_mm": 120, "why": "clamp"}]})
 
     plan = plan_of(disc_of(clamped, []), not_good="a trial piece")
     good = plan_of(disc_of(clamped, []))
 
-    assert texts(plan.disc)[:2] == ["NOT GOOD TO CUT", FINGERPRINT]
-    assert FINGERPRINT in texts(good.disc)
+    assert texts(plan.disc) == ["NOT GOOD TO CUT", *texts(good.disc)]
+    assert texts(good.disc) == ["The Long Meadow", "plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
     assert index_mark(plan.disc).points_mm[0, :, 0].max() < 48.98
 
 
@@ -170,10 +228,18 @@ def test_a_title_is_engraved_in_plain_letters_and_shortened() -> None:
 
     plan = plan_of(disc_of(PLAIN, []), title=title)
 
-    # No like of the dash and of the two ideographs in ASCII: three times "?"; 32 characters at most.
-    assert texts(plan.disc)[0] == "Zlutoucky kun ? ?? uber den W..."
+    # No like of the two ideographs in ASCII: twice "?"; 32 characters at most.
+    assert texts(plan.disc)[0] == "Zlutoucky kun - ?? uber den W..."
     assert plan.title == title
-    assert "title: Zlutoucky kun ? ?? uber den Wiesen, eine sehr lange Weise" in plan.disc.comments
+    assert "title: Zlutoucky kun - ?? uber den Wiesen, eine sehr lange Weise" in plan.disc.comments
+
+
+@pytest.mark.parametrize("title", ["Пчёлы летят", "音楽", "🎵 🎶 ?"])
+def test_a_title_without_letters_the_font_knows_is_left_off_the_disc_but_not_out_of_the_file(title: str) -> None:
+    plan = plan_of(disc_of(PLAIN, []), title=title)
+
+    assert texts(plan.disc) == ["plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    assert f"title: {title}" in plan.disc.comments
 
 
 def test_a_title_of_blanks_is_left_out() -> None:
@@ -263,7 +329,7 @@ def test_marks_are_clear_of_openings_holes_tracks_and_keep_outs(
         said = texts(drawing)
         assert said[0] == ("NOT GOOD TO CUT" if not_good and drawing is plan.disc else said[0])
         assert sorted(said) == sorted(set(said))
-        assert FINGERPRINT in said
+        assert {FINGERPRINT, "The Long Meadow", f"{movement.id} rev 1"} <= set(said)
         assert f"{'STAR' if cutter.drawn_from == 'star-side' else 'LABEL'} SIDE" in said
 
 

@@ -1,0 +1,149 @@
+"""Lettering on the disc: where there is room, and as much of it as there is room for."""
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from shapely import affinity
+from shapely.geometry.base import BaseGeometry
+
+from layout.cut.lettering import strokes_mm
+from layout.cut.plan import Lettering
+from layout.cut.room import CLEAR_MM, Rooms
+from layout.cut.wording import Inscription
+from layout.mechanics.arrays import FloatArray, frozen_floats
+
+# Heights of capitals, mm, tried from the first. ISO 3098 starts technical lettering at 1.8 mm; a laser's line
+# of 0.15 mm still leaves 1.2 mm legible (common practice); above 3 mm the lettering would crowd a small disc.
+LETTER_HEIGHTS_MM = (3.0, 2.5, 2.0, 1.8, 1.5, 1.2)
+LINE_PITCH_HEIGHTS = 1.6  # heights of capitals from line to line: tails reach 1/3 below a line, 0.27 stay free
+STEP_MM = 0.5  # mm; how finely places are tried along a radius
+STEP_DEG = 15  # degrees; and around the disc
+_HALF_TURN_DEG = 180
+# Below and above the centre first, then ever more to the sides.
+_AROUND_DEG = sorted(range(0, 360, STEP_DEG), key=lambda angle: (abs(abs(angle - 180) - 90), -angle))
+
+Block = list[tuple[FloatArray, ...]]  # the strokes of each line
+
+
+def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> tuple[Lettering, ...]:
+    """Lines of letters, as drawn: they read right on the side that is drawn.
+
+    All lines stand together if they fit so; if not, as many as do, and the rest somewhere else:
+    level if there is room, else turned so that they run along the rim. Where a line finds no room
+    that can be seen, it may stand where a clamp hides it in the movement, a warning even among the
+    openings. What fits nowhere is left out.
+
+    Args:
+        rooms: Where there is room, as drawn.
+        lines: What to write; a line gives way to those before it.
+        rim_mm: The disc's radius.
+
+    Returns:
+        One Lettering a line; none where nothing fits.
+    """
+    written: list[Lettering] = []
+    left = list(lines)
+    while left:
+        placed = _placed(rooms, written, left, rim_mm)
+        written += placed
+        left = left[max(len(placed), 1) :]
+    return tuple(written)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Search:
+    """Where to look for a block's place.
+
+    Attributes:
+        room: The free metal, turned so that the block stands level in it.
+        centres_mm: Shape (n, 2). Places to try, the best first.
+        turn_rad: By how much the block must be turned to stand on the disc.
+    """
+
+    room: BaseGeometry
+    centres_mm: FloatArray
+    turn_rad: float
+
+
+def _placed(rooms: Rooms, written: list[Lettering], left: list[Inscription], rim_mm: float) -> list[Lettering]:
+    """The first of the lines left, with as many as can stand with it; none where there is no room for it."""
+    taken = shapely.union_all([shapely.MultiLineString(line.strokes_mm).convex_hull for line in written])
+    taken = taken.buffer(CLEAR_MM)
+    together = [_block_of(left[:count]) for count in range(len(left), 0, -1)]
+    shorter: list[tuple[str, ...]] = [(form,) for form in left[0].forms[1:]]
+    for room, blocks in ((rooms.seen, together), (rooms.seen, shorter), (rooms.hidden, together + shorter)):
+        found = _first_that_fits(room().difference(taken), blocks, rim_mm)
+        if found:
+            return found
+    warnings = [line for line in left if line.is_warning]
+    if not left[0].is_warning:
+        return []
+    return _first_that_fits(rooms.between().difference(taken), [_block_of(warnings), _block_of(left[:1])], rim_mm)
+
+
+def _block_of(lines: list[Inscription]) -> tuple[str, ...]:
+    return tuple(line.forms[0] for line in sorted(lines, key=lambda line: line.row))
+
+
+def _first_that_fits(room: BaseGeometry, blocks: list[tuple[str, ...]], rim_mm: float) -> list[Lettering]:
+    for search in _searches(room, rim_mm) if blocks else ():
+        shapely.prepare(search.room)
+        near_mm = search.centres_mm[shapely.contains_xy(search.room, search.centres_mm)]
+        for texts in blocks:
+            for height_mm in LETTER_HEIGHTS_MM:
+                block = _block(texts, height_mm)
+                at_mm = _first_fit_mm(search.room, near_mm, block)
+                if at_mm is not None:
+                    return [
+                        Lettering(
+                            layer="MARKS", text=text, strokes_mm=tuple(_on_disc(s + at_mm, search) for s in strokes)
+                        )
+                        for text, strokes in zip(texts, block, strict=True)
+                    ]
+    return []
+
+
+def _searches(room: BaseGeometry, rim_mm: float) -> Iterator[_Search]:
+    """Level everywhere, below and above the centre first; then turned, the more level the sooner.
+
+    The tops of turned letters point to the rim above the centre, and to the centre below it.
+    """
+    around_rad = np.radians(_AROUND_DEG)[:, None]
+    radius_mm = np.arange(STEP_MM, rim_mm, STEP_MM)[None, :]
+    centres_mm = np.stack([radius_mm * np.cos(around_rad), radius_mm * np.sin(around_rad)], axis=-1).reshape(-1, 2)
+    yield _Search(room=room, centres_mm=centres_mm, turn_rad=0.0)
+    outermost_mm = radius_mm[0, ::-1]
+    for around_deg in _AROUND_DEG[2:]:
+        down = around_deg >= _HALF_TURN_DEG
+        turn_rad = math.radians(around_deg - (270 if down else 90))
+        column_mm = np.stack([np.zeros_like(outermost_mm), -outermost_mm if down else outermost_mm], axis=-1)
+        turned = affinity.rotate(room, -turn_rad, origin=(0, 0), use_radians=True)
+        yield _Search(room=turned, centres_mm=column_mm, turn_rad=turn_rad)
+
+
+def _on_disc(points_mm: FloatArray, search: _Search) -> FloatArray:
+    cos, sin = math.cos(search.turn_rad), math.sin(search.turn_rad)
+    return frozen_floats(points_mm @ np.array([(cos, sin), (-sin, cos)]))
+
+
+def _block(texts: tuple[str, ...], height_mm: float) -> Block:
+    """The strokes of each line, the block centred on (0, 0)."""
+    pitch_mm = height_mm * LINE_PITCH_HEIGHTS
+    top_mm = ((len(texts) - 1) * pitch_mm - height_mm) / 2
+    down_mm = [np.array([0.0, top_mm - place * pitch_mm]) for place in range(len(texts))]
+    return [
+        tuple(frozen_floats(stroke + shift) for stroke in strokes_mm(text, height_mm))
+        for text, shift in zip(texts, down_mm, strict=True)
+    ]
+
+
+def _first_fit_mm(room: BaseGeometry, centres_mm: FloatArray, block: Block) -> FloatArray | None:
+    left_mm = centres_mm
+    for strokes in block:
+        points = np.concatenate(strokes)
+        low, high = points.min(axis=0) + left_mm, points.max(axis=0) + left_mm
+        left_mm = left_mm[shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))]
+    return left_mm[0] if len(left_mm) else None
