@@ -85,7 +85,7 @@ def _compare(drawing: CutDrawing, layer: str, wanted: list[_Edge]) -> list[Findi
         if contour.closed and len(traced) >= _FEWEST_CORNERS:
             lines.append(shapely.LinearRing(traced))
         else:
-            findings.append(_open_line(contour))
+            findings.append(_open_line(drawing, contour))
     # Boxes as shape (n, 4): quick to tell which line is which, however many there are.
     wanted_boxes = shapely.bounds(np.array([edge.line for edge in wanted], dtype=np.object_))
     boxes = shapely.bounds(np.array(lines, dtype=np.object_)).reshape(-1, 4)
@@ -93,7 +93,7 @@ def _compare(drawing: CutDrawing, layer: str, wanted: list[_Edge]) -> list[Findi
     for place, edge in enumerate(wanted):
         mine = np.flatnonzero(partner == place)
         off = np.abs(boxes[mine] - wanted_boxes[place]).max(axis=1)
-        findings += _compare_edge(edge, [lines[index] for index in mine[off.argsort(kind="stable")]])
+        findings += _compare_edge(drawing, edge, [lines[index] for index in mine[off.argsort(kind="stable")]])
     return findings
 
 
@@ -106,7 +106,7 @@ def _refuse_too_fine(contours: list[Contour], layer: str) -> None:
         )
 
 
-def _compare_edge(edge: _Edge, found: list[shapely.LinearRing]) -> list[Finding]:
+def _compare_edge(drawing: CutDrawing, edge: _Edge, found: list[shapely.LinearRing]) -> list[Finding]:
     """What is wrong with the lines found for an edge, the most like it first."""
     if not found:
         return [_differs(edge, f"the drawing has no {edge.name}", None)]
@@ -120,7 +120,7 @@ def _compare_edge(edge: _Edge, found: list[shapely.LinearRing]) -> list[Finding]
         findings.append(_differs(edge, message, off_mm))
     for line in found[1:]:
         again = max(abs(a - b) for a, b in zip(found[0].bounds, line.bounds, strict=True)) <= SAME_CUT_MM
-        findings.append(_twice(edge) if again else _extra(line, edge))
+        findings.append(_twice(edge) if again else _extra(drawing, line, edge))
     return findings
 
 
@@ -150,15 +150,15 @@ def _twice(edge: _Edge) -> Finding:
     )
 
 
-def _extra(line: shapely.LinearRing, edge: _Edge) -> Finding:
-    x, y = (round((low + high) / 2, 3) + 0.0 for low, high in (line.bounds[::2], line.bounds[1::2]))
+def _extra(drawing: CutDrawing, line: shapely.LinearRing, edge: _Edge) -> Finding:
+    x, y = ((low + high) / 2 for low, high in (line.bounds[::2], line.bounds[1::2]))
     what = "a second rim" if edge.name == "rim" else "a hole the movement does not have"
-    return _unknown(f"the drawing has {what}, around ({x:.3f}, {y:.3f})", math.hypot(x, y), math.atan2(y, x))
+    return _unknown(f"the drawing has {what}, around {drawing.told(x, y)}", math.hypot(x, y), math.atan2(y, x))
 
 
-def _open_line(contour: Contour) -> Finding:
+def _open_line(drawing: CutDrawing, contour: Contour) -> Finding:
     x, y = contour.points_mm.mean(axis=0).tolist() if len(contour.points_mm) else (0.0, 0.0)
-    message = f"layer {contour.layer} has a line that does not close, around ({x:.3f}, {y:.3f})"
+    message = f"layer {contour.layer} has a line that does not close, around {drawing.told(x, y)}"
     return _unknown(message, math.hypot(x, y), math.atan2(y, x))
 
 

@@ -45,6 +45,7 @@ class CutDrawing:
         strangers: (our layer name, entity type) of what cannot be read, with its count.
         record_layers: Our names of the layers of a record that hold entities, with their count.
         other_layers: Layers of the drawing that are none of the cutter's, with their count of entities.
+        shows_star_side: Whether the file shows the cuts mirrored.
         mended: Whether the file was damaged and had to be mended while reading.
     """
 
@@ -53,6 +54,7 @@ class CutDrawing:
     strangers: dict[tuple[str, str], int]
     record_layers: dict[str, int]
     other_layers: dict[str, int]
+    shows_star_side: bool
     mended: bool
 
     def mirrored(self) -> "CutDrawing":
@@ -61,7 +63,13 @@ class CutDrawing:
             self,
             contours=tuple(contour.mirrored() for contour in self.contours),
             hits_mm=frozen_floats(self.hits_mm * (1.0, -1.0)),
+            shows_star_side=not self.shows_star_side,
         )
+
+    def told(self, x_mm: float, y_mm: float) -> str:
+        """A place in the coordinates of the file, where a person will look for it."""
+        y_drawn_mm = -y_mm if self.shows_star_side else y_mm
+        return f"({round(x_mm, 3) + 0.0:.3f}, {round(y_drawn_mm, 3) + 0.0:.3f})"
 
 
 def cut_drawing_of(document: Drawing, cutter: Cutter, *, farthest_mm: float, mended: bool) -> CutDrawing:
@@ -148,6 +156,7 @@ class _Collecting:
             strangers=dict(self.strangers),
             record_layers=dict(self.record_layers),
             other_layers=dict(self.other_layers),
+            shows_star_side=False,
             mended=mended,
         )
 

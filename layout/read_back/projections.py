@@ -96,7 +96,7 @@ def projections_of(drawing: CutDrawing, wanted: Wanted) -> Found:
         found = origins_of(places, wanted.pattern.strike_u_mm, wanted.turning.direction)
         origins.append(np.column_stack([np.abs(found), np.angle(found)]))
     elif len(drawing.hits_mm):
-        findings += [_stray_hit(x, y, wanted.cutter) for x, y in drawing.hits_mm.tolist()]
+        findings += [_stray_hit(drawing, (x, y), wanted.cutter) for x, y in drawing.hits_mm.tolist()]
     edges, more = _on_tracks(np.concatenate([np.zeros((0, 2)), *origins]), wanted.turning)
     return Found(edges=edges, findings=findings + more, shows_side=shows_side)
 
@@ -146,11 +146,12 @@ def _place(radius_mm: float, angle_rad: float, tracks: Iterable[int] = ()) -> Pl
     return Place(tracks=tuple(tracks), radius_mm=radius_mm, angle_deg=angle_deg)
 
 
-def _stray_hit(x_mm: float, y_mm: float, cutter: Cutter) -> Finding:
+def _stray_hit(drawing: CutDrawing, at_mm: tuple[float, float], cutter: Cutter) -> Finding:
+    x_mm, y_mm = at_mm
     return Finding(
         code=Code.UNKNOWN_CUT,
         level=Level.ERROR,
-        message=f"layer {cutter.layer('HITS').name} has a hit at ({x_mm:.3f}, {y_mm:.3f}), and a laser makes none",
+        message=f"layer {cutter.layer('HITS').name} has a hit at {drawing.told(x_mm, y_mm)}, and a laser makes none",
         measured=None,
         limit=None,
         unit="",

@@ -11,7 +11,7 @@ from ezdxf.entities import DXFEntity, LWPolyline
 from layout.check.finding import Code, Finding, Level
 from layout.documents import Cutter, Movement
 from layout.read_back import Reading, read_back
-from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, disc_of, movement_with
+from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
 
 # Track 1 (50 mm) at 30 + 6·5 = 60 degrees, track 3 (100 mm) at 90 degrees; clockwise, released on the row.
@@ -248,6 +248,35 @@ def test_a_cut_that_is_nothing_of_this_movement_is_an_error(add: Any, said: str)
     assert finding.message == said
     assert finding.remedy
     assert reading.disc.projection_count == 2
+
+
+@pytest.mark.parametrize(
+    ("add", "said"),
+    [
+        (
+            lambda space: space.add_circle((0, 70), 1, dxfattribs={"layer": "HOLES"}),
+            "the drawing has a hole the movement does not have, around (0.000, 70.000)",
+        ),
+        (
+            lambda space: space.add_line((10, 70), (10, 72), dxfattribs={"layer": "RIM"}),
+            "layer RIM has a line that does not close, around (10.000, 71.000)",
+        ),
+        (
+            lambda space: space.add_point((0, 70), dxfattribs={"layer": "HITS"}),
+            "layer HITS has a hit at (0.000, 70.000), and a laser makes none",
+        ),
+    ],
+)
+def test_a_place_in_a_message_is_where_the_file_has_it_though_it_shows_the_star_side(add: Any, said: str) -> None:
+    cutter = cutter_with({"drawn_from": "star-side"})
+    document = disc_document(disc_of(PLAIN, [(1, 5.0)], cutter))
+    add(document.modelspace())
+
+    finding = only(read(document, cutter=cutter))
+
+    assert finding.message == said
+    # Straight up on the star side is straight down on the label side, where angles are told.
+    assert finding.at.angle_deg == pytest.approx(270, abs=10)
 
 
 def test_a_projection_on_the_wrong_layer_is_not_taken_for_one() -> None:

@@ -24,7 +24,7 @@ ROUND_SLOTS = movement_with(
         "star_wheel": {"engagement_arc_mm": 3.2, "release_arc_mm": 0.0, "thickness_mm": 0.5},
     }
 )
-# The plain movement's blank is the same from both sides; here the music is not, as it has 10 degrees before and 70 after.
+# The plain movement's blank is the same from both sides; its music, with 10 degrees before and 70 after, is not.
 UNEVEN = movement_with({"before_music_deg": 10, "after_music_deg": 70})
 
 
