@@ -11,18 +11,21 @@ from layout.documents import Movement
 from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter
 from service.commands.errors import ERROR_STANDS, GOOD
 from service.commands.files_in import read_file, read_named_cutter, read_named_movement
-from service.commands.findings import finding_lines, finding_told
+from service.commands.findings import finding_lines, finding_told, thousandths
 from service.commands.output import aligned, say, say_json
 from service.planner import CheckedDrawing
 
 ABOUT = (
-    "Read a disc back from a drawing and check it. Only what is cut is read (the layers SLITS, SLOTS and HITS, as "
-    "the cutter names them), so this is what the cut disc will play. Ends with 0 where nothing is wrong at error "
+    "Read a disc back from a drawing and check it. Only what is cut is read (the layers SLITS, SLOTS, HITS, HOLES and "
+    "RIM, as the cutter names them), so this is what the cut disc will play. A record, and a file marked NOT GOOD TO "
+    "CUT, are errors. Ends with 0 where nothing is wrong at error "
     "level, with 3 where an error stands, with 2 where the drawing cannot be read."
 )
 EXAMPLE = """example:
   discwright check dance/disc.dxf --movement fernhollow-31
       says how often each track is plucked, when first and last, and what is wrong"""
+
+SECONDS_DECIMALS = 6  # a microsecond: what the rounding of a drawing leaves is nearly as much
 
 
 def add_arguments(parser: OneLineParser) -> None:
@@ -62,8 +65,8 @@ def drawing_told(checked: CheckedDrawing, movement: Movement) -> dict[str, Any]:
         movement: The movement it was checked for.
 
     Returns:
-        Times in seconds from the start of the music, null where nothing is plucked; plucks in the order
-        they sound, tracks from the innermost.
+        Times in seconds from the start of the music, to a microsecond, null where nothing is plucked;
+        plucks in the order they sound, tracks from the innermost.
     """
     disc, plucks = checked.disc, checked.plucks
     pitches = {tooth.track: tooth.pitch for tooth in reversed(movement.teeth)}
@@ -74,7 +77,8 @@ def drawing_told(checked: CheckedDrawing, movement: Movement) -> dict[str, Any]:
             "pitch": pitches.get(int(plucks.track_index[place]) + 1, ""),
             "radius_mm": float(disc.radius_mm[place]),
             "angle_deg": math.degrees(float(disc.edge_angle_rad[place])),
-            "sounds_s": float(plucks.sounds_s[place]),
+            # A first pluck read back a nanosecond early is at 0, not at -6e-09 nor -0.
+            "sounds_s": round(float(plucks.sounds_s[place]), SECONDS_DECIMALS) + 0.0,
         }
         for place in order
     ]
@@ -106,7 +110,7 @@ def _lines(drawing: Path, told: dict[str, Any], movement: Movement) -> list[str]
 
 
 def _seconds(value_s: float) -> str:
-    return f"{round(value_s, 3) + 0.0:.3f} s"  # a first pluck read back a nanosecond early is at 0, not at -0
+    return f"{thousandths(value_s)} s"
 
 
 def _counted(count: int) -> str:

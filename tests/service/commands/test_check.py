@@ -1,13 +1,17 @@
 import json
+from dataclasses import replace
 from pathlib import Path
 
+import numpy as np
 import pytest
 
+from layout.check.finding import Code, Place
 from layout.write import layout_json
 from service.commands.findings import finding_lines, finding_told
 from service.commands.main import main
+from service.demo.compose import TUNE_PATH
 from tests.service.commands.conftest import Discwright
-from tests.service.fakes import NEAR_RIM, THIN_WEB, FakePlanner
+from tests.service.fakes import NEAR_RIM, THIN_WEB, FakePlanner, FakePlucks
 
 
 @pytest.fixture
@@ -53,8 +57,9 @@ def test_an_error_in_a_drawing_gives_exit_3(
     code = discwright("check", drawing, "--movement", "fernhollow-31")
 
     assert code == 3
-    assert capsys.readouterr().out.splitlines()[-3:] == [
+    assert capsys.readouterr().out.splitlines()[-4:] == [
         "error web-too-thin: the web between track 3 and track 4 is 0.31 mm, below 0.5 mm",
+        "    where: tracks 3, 4; angle 12.500 degrees seen from the label side",
         "    what helps: leave out note 7",
         "NOT GOOD TO CUT",
     ]
@@ -88,8 +93,71 @@ def test_findings_are_written_as_layout_json_writes_them(finding: object) -> Non
 def test_many_findings_of_one_kind_are_told_in_short() -> None:
     lines = finding_lines([finding_told(THIN_WEB)] * 7)
 
-    assert len(lines) == 5 * 2 + 1
+    assert len(lines) == 5 * 3 + 1
     assert lines[-1] == "    and 2 more web-too-thin"
+
+
+@pytest.mark.parametrize(
+    ("at", "where"),
+    [
+        (Place(), []),
+        (Place(projections=(3,)), []),  # an index into layout.json says nothing to a person
+        (Place(tracks=(7,)), ["    where: track 7"]),
+        (Place(radius_mm=0.0), ["    where: radius 0.000 mm"]),
+        (
+            Place(tracks=(1, 2), radius_mm=36.00049, angle_deg=9.1234, sounds_s=-6e-9),
+            ["    where: tracks 1, 2; radius 36.000 mm; angle 9.123 degrees seen from the label side; moment 0.000 s"],
+        ),
+    ],
+)
+def test_a_finding_is_told_with_its_place(at: Place, where: list[str]) -> None:
+    lines = finding_lines([finding_told(replace(NEAR_RIM, at=at))])
+
+    assert lines == [f"warning web-to-rim: {NEAR_RIM.message}", *where, f"    what helps: {NEAR_RIM.remedy}"]
+
+
+def test_errors_come_first_and_kinds_in_the_order_they_were_found() -> None:
+    other = replace(THIN_WEB, code=Code.OTHER_SIDE)
+    blank = replace(THIN_WEB, code=Code.BLANK_DIFFERS)
+
+    lines = finding_lines([finding_told(finding) for finding in (NEAR_RIM, other, blank, other)])
+
+    told = [line.split(":")[0] for line in lines if not line.startswith(" ")]
+    assert told == ["error other-side", "error other-side", "error blank-differs", "warning web-to-rim"]
+
+
+def test_moments_in_json_are_rounded_to_a_microsecond_and_never_minus_zero(
+    discwright: Discwright,
+    drawing: Path,
+    capsys: pytest.CaptureFixture[str],
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    # The drawing's rounding leaves nanoseconds: -6.21e-09 s was seen on a real disc.
+    plucks = FakePlucks(sounds_s=np.array([2.5000004, -6.21e-09, 7.1234567]))
+    monkeypatch.setattr("tests.service.fakes.FakePlucks", lambda: plucks)
+
+    discwright("check", drawing, "--movement", "fernhollow-31", "--json")
+
+    out = capsys.readouterr().out
+    told = json.loads(out)
+    assert (told["first_s"], told["last_s"]) == (0.0, 7.123457)
+    assert [pluck["sounds_s"] for pluck in told["plucks"]] == [0.0, 2.5, 7.123457]
+    assert "-0.0" not in out
+
+
+def test_a_record_is_never_good_to_cut(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    main(["plan", str(TUNE_PATH), "--movement", "fernhollow-31", "--out", str(tmp_path)])  # with the real computation
+    capsys.readouterr()
+
+    codes = {
+        name: main(["check", str(tmp_path / name), "--movement", "fernhollow-31"])
+        for name in ("disc.dxf", "record.dxf")
+    }
+
+    out = capsys.readouterr().out
+    assert codes == {"disc.dxf": 0, "record.dxf": 3}
+    assert out.splitlines()[-1] == "NOT GOOD TO CUT"
+    assert "error not-a-cutting-file: the drawing is a record, for reading, never for cutting" in out
 
 
 def test_a_drawing_that_is_not_there_is_one_line_and_exit_2(
