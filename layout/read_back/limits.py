@@ -1,7 +1,7 @@
 """What reading back accepts and how closely a cut must agree, in one table."""
 
 MOST_MIB = 10  # MiB; a disc of 3000 projections takes about 1, other programs' files some times that
-MOST_CUTS = 10_000  # contours and points; several times the fullest disc of 67 tracks
+MOST_CUTS = 20_000  # contours and points; a dense tune on the largest shipped movement gives 14,000
 MOST_VERTICES = 20_000  # vertices of one contour; a rim drawn in straight pieces of 0.1 mm has 13,000
 MOST_TRACED = 1_000_000  # points that trace holes and rim; 1,000 rims of the largest disc
 FARTHEST_MM = 2_000.0  # mm; what lies farther off was not drawn in mm, unless the movement's own disc reaches so far
