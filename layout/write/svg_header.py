@@ -9,8 +9,8 @@ from svgwrite.shapes import Circle, Rect
 from layout.check.finding import Level
 from layout.cut.plan import CutPlan
 from layout.write.laid_out import NOT_GOOD, LaidOut
-from layout.write.svg_disc import turning_as_drawn
-from layout.write.svg_page import Face, Page, short, shortened, words
+from layout.write.svg_page import Face, Page, fitted, short, shortened, words
+from layout.write.svg_signs import turning_as_drawn
 from layout.write.svg_style import (
     BLACK,
     BLUISH_GREEN,
@@ -25,6 +25,8 @@ from layout.write.svg_style import (
 
 _REASON_SIZE = 2.2
 _BAND, _GOOD_LINE, _HEAD = 8.2, 4.6, 10.2  # heights in hundredths of the page's width
+_LEAST_TITLE_SIZE = 3.0
+_LINE_HEIGHT = 1.15  # of the letter size
 
 
 def is_good(plan: CutPlan, laid_out: LaidOut) -> bool:
@@ -34,19 +36,32 @@ def is_good(plan: CutPlan, laid_out: LaidOut) -> bool:
 
 def header_height_mm(plan: CutPlan, laid_out: LaidOut, page: Page) -> float:
     """How high title and verdict are together."""
-    return page.units_mm(_HEAD + (_GOOD_LINE if is_good(plan, laid_out) else _BAND))
+    verdict = _GOOD_LINE if is_good(plan, laid_out) else _BAND
+    return _head_height_mm(plan, page) + page.units_mm(verdict)
+
+
+def _title(plan: CutPlan, page: Page) -> tuple[Face, list[str]]:
+    face = Face(size_mm=page.units_mm(TITLE_SIZE), bold=True)
+    return fitted(plan.title, face, page.room_mm, page.units_mm(_LEAST_TITLE_SIZE))
+
+
+def _head_height_mm(plan: CutPlan, page: Page) -> float:
+    face, lines = _title(plan, page)
+    return page.units_mm(_HEAD) + (len(lines) - 1) * face.size_mm * _LINE_HEIGHT
 
 
 def header(plan: CutPlan, laid_out: LaidOut, page: Page, top_mm: float) -> Group:
     """Title, movement and verdict, from top_mm down."""
     group = Group(id="header", debug=False)
-    title = Face(size_mm=page.units_mm(TITLE_SIZE), bold=True)
+    title, lines = _title(plan, page)
     lead = Face(size_mm=page.units_mm(LEAD_SIZE), colour=WORD_GREY)
     left_mm, room_mm = page.left_mm, page.room_mm
-    group.add(words(shortened(plan.title, title, room_mm), (left_mm, top_mm + page.units_mm(5.6)), title))
+    for place, line in enumerate(lines):
+        down_mm = page.units_mm(5.6) + place * title.size_mm * _LINE_HEIGHT
+        group.add(words(line, (left_mm, top_mm + down_mm), title))
+    verdict_mm = top_mm + _head_height_mm(plan, page)
     movement = shortened(laid_out.disc.movement.title, lead, room_mm)
-    group.add(words(movement, (left_mm, top_mm + page.units_mm(9.0)), lead))
-    verdict_mm = top_mm + page.units_mm(_HEAD)
+    group.add(words(movement, (left_mm, verdict_mm - page.units_mm(1.2)), lead))
     group.add(
         _good(laid_out, page, verdict_mm) if is_good(plan, laid_out) else _not_good(plan, laid_out, page, verdict_mm)
     )

@@ -1,7 +1,7 @@
 """The sheet the picture stands on: its units, and the ways anything is put on it."""
 
 import unicodedata
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import svgwrite
@@ -17,8 +17,19 @@ PAGE_PER_DISC = 1.14  # the page's width in disc diameters: room for the turning
 HUNDRED = 100.0
 _HALF_ROOM = 47.0  # hundredths of the page's width, from its middle
 _DECIMALS = 3  # of a millimetre, for what is not an outline
-_NARROW, _MIDDLE, _BROAD, _FULL = 0.36, 0.61, 0.74, 1.0  # em; rather too wide, since fonts differ
+# em; of a wide font, DejaVu Sans, rounded up, since fonts differ; capitals and other scripts are broad
+_WIDTHS = (
+    (0.36, "ijlIJf.,:;'|/\\- "),
+    (0.42, 'tr()[]!*"'),
+    (0.59, "sczkvxyLFTYP?_"),
+    (1.0, "mMW—…@%"),
+)
+_WIDTH_OF = {character: width for width, characters in _WIDTHS for character in characters}
+_MIDDLE, _BROAD, _FULL = 0.64, 0.79, 1.0
 _BOLD = 1.16
+_LATIN = 0x250  # the first character after the Latin letters
+_SIZES = 8  # steps from the largest letters to the smallest
+_LATIN = 0x250  # the first character after the Latin letters
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -116,15 +127,17 @@ def words(text: str, at_mm: tuple[float, float], face: Face) -> Text:
 
 def text_width_mm(text: str, face: Face) -> float:
     """About how wide a line of text is, rather more than less: the font is the viewer's."""
-    widths = 0.0
-    for character in text:
-        if unicodedata.east_asian_width(character) in {"W", "F"}:
-            widths += _FULL
-        elif character in "ijltfrI.,;:'|!()[] ":
-            widths += _NARROW
-        else:
-            widths += _BROAD if character.isupper() or character in "mwMW—…@%" else _MIDDLE
+    widths = sum(map(_width_em, text))
     return widths * face.size_mm * (_BOLD if face.bold else 1.0)
+
+
+def _width_em(character: str) -> float:
+    if character in _WIDTH_OF:
+        return _WIDTH_OF[character]
+    if unicodedata.east_asian_width(character) in {"W", "F"}:
+        return _FULL
+    is_broad = character.isupper() or character in "w&+−×=<>#^~" or ord(character) >= _LATIN
+    return _BROAD if is_broad else _MIDDLE
 
 
 def shortened(text: str, face: Face, room_mm: float) -> str:
@@ -138,12 +151,46 @@ def shortened(text: str, face: Face, room_mm: float) -> str:
 
 
 def wrapped(text: str, face: Face, room_mm: float) -> list[str]:
-    """The text broken between words into lines that fit; a word that is too long alone is cut."""
+    """The text broken into lines that fit: between words, and inside a word that is too long alone."""
     lines: list[str] = []
     for word in one_line(text).split(" "):
         longer = f"{lines[-1]} {word}" if lines else word
         if lines and text_width_mm(longer, face) <= room_mm:
             lines[-1] = longer
         else:
-            lines.append(shortened(word, face, room_mm))
+            lines += _pieces(word, face, room_mm)
     return lines
+
+
+def _pieces(word: str, face: Face, room_mm: float) -> list[str]:
+    pieces = [""]
+    for character in word:
+        if pieces[-1] and text_width_mm(pieces[-1] + character, face) > room_mm:
+            pieces.append("")
+        pieces[-1] += character
+    return pieces
+
+
+def at_most(most_lines: int, text: str, face: Face, room_mm: float) -> list[str]:
+    """The text broken into so many lines at most, the last one cut with "…" where it does not fit."""
+    lines = wrapped(text, face, room_mm)
+    if len(lines) <= most_lines:
+        return lines
+    rest = " ".join(lines[most_lines - 1 :])
+    return [*lines[: most_lines - 1], shortened(rest, face, room_mm)]
+
+
+def fitted(text: str, face: Face, room_mm: float, least_size_mm: float) -> tuple[Face, list[str]]:
+    """The text on one line, smaller where it must be; else on two lines; else cut with "…".
+
+    Returns:
+        The face with the size it takes, not under least_size_mm, and the lines.
+    """
+    sizes_mm = [face.size_mm + (least_size_mm - face.size_mm) * step / _SIZES for step in range(_SIZES + 1)]
+    faces = [replace(face, size_mm=size_mm) for size_mm in sizes_mm]
+    for most_lines in (1, 2):
+        for smaller in faces:
+            lines = wrapped(text, smaller, room_mm)
+            if len(lines) <= most_lines:
+                return smaller, lines
+    return faces[-1], at_most(2, text, faces[-1], room_mm)

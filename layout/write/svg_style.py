@@ -17,12 +17,13 @@ from layout.cut.plan import LayerName
 
 BLACK, WHITE = "#000000", "#ffffff"
 ORANGE, SKY_BLUE, BLUISH_GREEN = "#e69f00", "#56b4e9", "#009e73"
-BLUE, VERMILION, REDDISH_PURPLE = "#0072b2", "#d55e00", "#cc79a7"
+BLUE, VERMILION = "#0072b2", "#d55e00"
 SHEET, TRACK_GREY, WORD_GREY = "#f3f2ee", "#b5b3ac", "#55534d"
 
 FONT = "Arial, Helvetica, 'Liberation Sans', 'DejaVu Sans', sans-serif"
 TITLE_SIZE, VERDICT_SIZE, LEAD_SIZE, TEXT_SIZE, SMALL_SIZE = 4.4, 3.6, 2.4, 1.9, 1.6
-EMPHASIS_WIDTH = 0.16  # of working edges
+EMPHASIS_WIDTH, FLAG_WIDTH = 0.16, 0.25  # of working edges, of the index mark
+ROW_DASHES_RATIO = (0.012, 0.004, 0.002, 0.004)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -44,7 +45,7 @@ class LayerStyle:
     dashes_ratio: tuple[float, ...] = ()
 
 
-# In painting order, the last on top.
+# In painting order, the last on top; those of OVER_EDGES above the working edges.
 LAYER_STYLES: MappingProxyType[LayerName, LayerStyle] = MappingProxyType(
     {
         "RIM": LayerStyle(title="rim", stroke=BLACK, fill=SHEET, line_ratio=0.0016),
@@ -52,15 +53,18 @@ LAYER_STYLES: MappingProxyType[LayerName, LayerStyle] = MappingProxyType(
         "AFTER_FORMING": LayerStyle(title="opening after forming", stroke="none", fill=SKY_BLUE, line_ratio=0.0),
         "SLITS": LayerStyle(title="slit", stroke=BLUE, fill="none", line_ratio=0.00035),
         "SLOTS": LayerStyle(title="slot", stroke=BLUE, fill="none", line_ratio=0.0006),
+        "HITS": LayerStyle(title="hit", stroke=BLUE, fill="none", line_ratio=0.002),
+        "HOLES": LayerStyle(title="hole", stroke=BLACK, fill=WHITE, line_ratio=0.0012),
+        "LEADS": LayerStyle(title="lead-in", stroke=VERMILION, fill="none", line_ratio=0.0005),
         "FOLDS": LayerStyle(
             title="fold line", stroke=BLUISH_GREEN, fill="none", line_ratio=0.00035, dashes_ratio=(0.0012, 0.0008)
         ),
-        "HITS": LayerStyle(title="hit", stroke=REDDISH_PURPLE, fill="none", line_ratio=0.0018),
-        "HOLES": LayerStyle(title="hole", stroke=BLACK, fill=WHITE, line_ratio=0.0012),
-        "LEADS": LayerStyle(title="lead-in", stroke=VERMILION, fill="none", line_ratio=0.0005),
         "MARKS": LayerStyle(title="engraved mark", stroke=BLACK, fill="none", line_ratio=0.0009),
     }
 )
+
+
+OVER_EDGES: tuple[LayerName, ...] = ("FOLDS", "MARKS")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

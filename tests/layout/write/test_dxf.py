@@ -294,3 +294,13 @@ def test_an_empty_disc_is_still_a_blank(tmp_path: Path) -> None:
 
     assert {"HOLES", "RIM"} <= layers
     assert "SLITS" not in layers
+
+
+def test_a_title_the_engraving_font_lacks_is_spelled_out_at_the_head_of_the_file() -> None:
+    plan = plan_cuts(ONE_FOLD, title="音楽", fingerprint=FINGERPRINT, not_good=None)
+
+    dxf = write_dxf(plan.disc, LASER)
+
+    # U+97F3 and U+697D, The Unicode Standard; the notation is the DXF reference's
+    assert b"999\ntitle: \\U+97F3\\U+697D\n" in dxf
+    assert "音楽" not in [entity.text for entity in plan.disc.entities if isinstance(entity, Lettering)]

@@ -5,7 +5,7 @@ from hypothesis import strategies as st
 
 from layout.write.numbers import number, rounded
 from layout.write.plain_text import dxf_text, one_line
-from layout.write.svg_page import Face, shortened, text_width_mm, wrapped
+from layout.write.svg_page import Face, at_most, fitted, shortened, text_width_mm, wrapped
 
 FACE = Face(size_mm=2.0)
 
@@ -55,10 +55,32 @@ def test_a_shortened_line_fits_and_says_that_it_was_cut(text: str, room_mm: floa
     assert line == one_line(text) or line.endswith("…")
 
 
-@given(text=st.text(alphabet="abcdefgh ,", max_size=200), room_mm=st.floats(20, 60))
-def test_wrapped_lines_fit_and_hold_all_words_that_fit(text: str, room_mm: float) -> None:
+@given(text=st.text(alphabet="abcdefghmW ,", max_size=200), room_mm=st.floats(20, 60))
+def test_wrapped_lines_fit_and_hold_all_of_the_text(text: str, room_mm: float) -> None:
     lines = wrapped(text, FACE, room_mm)
 
     assert all(text_width_mm(line, FACE) <= room_mm for line in lines)
+    assert "".join(lines).replace(" ", "") == "".join(text.split())
     if all(text_width_mm(word, FACE) <= room_mm for word in text.split()):
         assert " ".join(lines) == one_line(text)
+
+
+@given(text=st.text(max_size=200), room_mm=st.floats(20, 60), most=st.integers(1, 4))
+def test_at_most_so_many_lines_are_written_and_the_last_says_that_it_was_cut(
+    text: str, room_mm: float, most: int
+) -> None:
+    lines = at_most(most, text, FACE, room_mm)
+
+    assert 1 <= len(lines) <= most
+    assert lines == wrapped(text, FACE, room_mm) or lines[-1].endswith("…")
+
+
+@given(text=st.text(max_size=90), room_mm=st.floats(20, 60))
+def test_a_fitted_text_is_as_large_as_it_can_be(text: str, room_mm: float) -> None:
+    face, lines = fitted(text, FACE, room_mm, 1.0)
+
+    assert 1.0 <= face.size_mm <= FACE.size_mm
+    assert len(lines) <= 2
+    assert all(text_width_mm(line, face) <= room_mm for line in lines)
+    if text_width_mm(one_line(text), FACE) <= room_mm:
+        assert (face, lines) == (FACE, [one_line(text)])
