@@ -98,14 +98,14 @@ class LayoutTeller:
 
     def layout(self, kept: KeptLayout, reason: str | None) -> Response:
         """A layout in JSON, with links to the files that can be had; those kept back are left out."""
-        given = [name for name in FILES if name in kept.files or (reason and not kept.good_to_cut)]
+        files = kept.files if reason is None or kept.good_to_cut else self._desk.marked_files(kept, reason)
         response = json_response(
             {
                 "fingerprint": kept.fingerprint,
                 "title": kept.title,
                 "good_to_cut": kept.good_to_cut,
-                "links": {name: self.address(kept, name, reason) for name in given},
-                "layout": json.loads(kept.files["layout.json"]),
+                "links": {name: self.address(kept, name, reason) for name in FILES if name in files},
+                "layout": json.loads(files["layout.json"]),
             }
         )
         response.set_etag(self._tag(kept, "layout", reason))

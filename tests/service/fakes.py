@@ -120,7 +120,8 @@ class FakePlanner:
         if not laid_out.good_to_cut and not_good is None:
             names = ["record.dxf", "disc.svg"]
         files = {name: f"{name} of {laid_out.title}{mark}".encode() for name in names}
-        return {**files, "layout.json": json.dumps(laid_out.record).encode()}
+        record = laid_out.record | {"despite_findings": not_good if mark else None}
+        return {**files, "layout.json": json.dumps(record).encode()}
 
     def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> FakeReading:
         good = all(finding.level is not Level.ERROR for finding in self.findings)

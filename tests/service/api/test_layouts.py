@@ -156,6 +156,7 @@ def test_a_reason_gives_cutting_files_that_say_what_they_are(faulty_client: Clie
     given = faulty_client.get(made.json["links"][name])
 
     assert list(made.json["links"]) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json"]
+    assert made.json["layout"]["despite_findings"] == "a trial cut"
     assert given.status_code == 200
     assert given.data == f"{name} of Harvest Dance NOT GOOD TO CUT: a trial cut".encode()
     assert 'filename="NOT-GOOD-TO-CUT_harvest-dance_' in given.headers["Content-Disposition"]
