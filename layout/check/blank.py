@@ -10,7 +10,7 @@ from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged
 from layout.check.star_wheel import used_tracks
 from layout.documents.movement import Feature
-from layout.mechanics.blank import feature_angles_rad, feature_core_mm
+from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
@@ -135,8 +135,8 @@ def webs_to_features_hold(disc: Disc) -> list[Finding]:
     cores = core_geometries(points_mm)
     findings: list[Finding] = []
     for feature in disc.movement.disc.features:
-        for angle_rad in feature_angles_rad(feature):
-            core, round_mm = feature_core_mm(feature, angle_rad)
+        for angle_deg in feature.angles_deg:
+            core, round_mm = feature_core_mm(feature, math.radians(angle_deg))
             findings += _webs_to_feature(disc, cores, feature, (core, round_mm + disc.pattern.core_round_mm))
     return findings[:MOST_FINDINGS]
 

@@ -15,11 +15,6 @@ WIDEST_ARC_RAD = math.pi / 2  # rad; a bulge of nearly a whole circle is ill-con
 _DIGITS = -round(math.log10(SAME_PLACE_MM))
 
 
-def feature_angles_rad(feature: Feature) -> FloatArray:
-    """Shape (count,). Angles of a feature's holes, slots or notches, evenly spread from the first."""
-    return np.radians(feature.first_at_deg + 360.0 * np.arange(feature.count) / feature.count)
-
-
 def turned_mm(points_mm: FloatArray, angle_rad: FloatArray) -> FloatArray:
     """Shape (n, k, 2). Points (x along the radius, y along the anticlockwise tangent), turned to each angle."""
     cos, sin = np.cos(angle_rad)[:, None], np.sin(angle_rad)[:, None]
@@ -42,7 +37,7 @@ def holes(movement: Movement) -> tuple[Entity, ...]:
 
 
 def _feature_holes(feature: Feature, seen: set[tuple[float, ...]]) -> Iterator[Entity]:
-    angle_rad = feature_angles_rad(feature)
+    angle_rad = np.radians(feature.angles_deg)
     centres_mm = turned_mm(np.array([[feature.radius_mm, 0.0]]), angle_rad)[:, 0, :]
     size = (feature.length_mm, feature.width_mm)
     keys = [(*size, *(round(float(value), _DIGITS) + 0.0 for value in centre)) for centre in centres_mm]
@@ -113,5 +108,5 @@ def _notches(movement: Movement) -> Iterator[tuple[float, FloatArray]]:
         else:
             mouth_mm = math.sqrt(rim_mm**2 - half_mm**2)
             corners = [(mouth_mm, -half_mm), (floor_mm, -half_mm), (floor_mm, half_mm), (mouth_mm, half_mm)]
-        for angle_rad in feature_angles_rad(feature):
+        for angle_rad in np.radians(feature.angles_deg):
             yield float(angle_rad) % (2 * math.pi), np.array(corners)

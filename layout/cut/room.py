@@ -8,7 +8,7 @@ import shapely
 from shapely import affinity
 from shapely.geometry.base import BaseGeometry
 
-from layout.cut.blank import feature_angles_rad, turned_mm
+from layout.cut.blank import turned_mm
 from layout.documents.movement import Feature, Movement
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
@@ -80,7 +80,7 @@ def _taken(feature: Feature) -> list[BaseGeometry]:
     """The boxes of a feature's holes, slots or notches: a little more than the round-ended ones cut away."""
     half = np.array([feature.width_mm, feature.length_mm]) / 2
     corners = np.array([(1, 1), (-1, 1), (-1, -1), (1, -1)]) * half + np.array([feature.radius_mm, 0.0])
-    return [shapely.Polygon(box) for box in turned_mm(corners, feature_angles_rad(feature))]
+    return [shapely.Polygon(box) for box in turned_mm(corners, np.radians(feature.angles_deg))]
 
 
 def _openings(disc: Disc) -> BaseGeometry:

@@ -50,6 +50,11 @@ class Feature(Part):
     width_mm: Length
     length_mm: Length
 
+    @property
+    def angles_deg(self) -> tuple[float, ...]:
+        """Where the features of the row lie, evenly spread round the disc from first_at_deg."""
+        return tuple(self.first_at_deg + FULL_TURN_DEG * place / self.count for place in range(self.count))
+
 
 class DiscBlank(Part):
     """The sheet the disc is made of, and what is cut in it beside the tune."""

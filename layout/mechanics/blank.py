@@ -1,4 +1,4 @@
-"""The blank's own features: where each hole, slot or notch of a row lies, and its shape."""
+"""The blank's own features: the shape of each hole, slot or notch of a row."""
 
 import math
 
@@ -8,13 +8,6 @@ from shapely.geometry.base import BaseGeometry
 
 from layout.documents.movement import Feature
 from layout.mechanics.arrays import FloatArray
-from layout.mechanics.turning import FULL_TURN_RAD
-
-
-def feature_angles_rad(feature: Feature) -> list[float]:
-    """Angles of the features of a row, evenly spread round the disc from first_at_deg."""
-    first = math.radians(feature.first_at_deg)
-    return [first + place * FULL_TURN_RAD / feature.count for place in range(feature.count)]
 
 
 def feature_axes(angle_rad: float) -> tuple[FloatArray, FloatArray]:

@@ -9,7 +9,7 @@ from shapely import affinity
 from shapely.geometry.base import BaseGeometry
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.documents.movement import Feature, Movement
+from layout.documents.movement import Movement
 from layout.errors import DrawingReadError
 from layout.read_back.contour import Contour, steps_of_arcs
 from layout.read_back.entities import CutDrawing
@@ -40,10 +40,6 @@ def _quarter_steps(radius_mm: float) -> int:
     return int(steps_of_arcs(np.array([radius_mm]), np.array([math.pi / 2]))[0])
 
 
-def _feature_angles_deg(feature: Feature) -> list[float]:
-    return [feature.first_at_deg + 360.0 * place / feature.count for place in range(feature.count)]
-
-
 def _holes(movement: Movement) -> list[_Edge]:
     edges = [
         _Edge(name="centre hole", line=_circle(movement.disc.centre_hole_mm / 2).boundary, at=Place(radius_mm=0.0))
@@ -56,7 +52,7 @@ def _holes(movement: Movement) -> list[_Edge]:
         x = feature.radius_mm
         middle = shapely.LineString([(x - across_mm, -along_mm), (x + across_mm, along_mm)])
         shape = middle.buffer(end_mm, quad_segs=_quarter_steps(end_mm)).boundary
-        for angle_deg in _feature_angles_deg(feature):
+        for angle_deg in feature.angles_deg:
             turned = affinity.rotate(shape, angle_deg, origin=(0, 0))
             name = f"{feature.purpose} {feature.shape} at {x:g} mm, {angle_deg % 360:g} degrees"
             if not any(shapely.equals_exact(turned, edge.line, SAME_CUT_MM) for edge in edges):
@@ -71,7 +67,7 @@ def _rim(movement: Movement) -> _Edge:
         if feature.shape == "notch":
             half_mm = feature.width_mm / 2, feature.length_mm / 2
             box = shapely.box(feature.radius_mm - half_mm[0], -half_mm[1], feature.radius_mm + half_mm[0], half_mm[1])
-            for angle_deg in _feature_angles_deg(feature):
+            for angle_deg in feature.angles_deg:
                 disc = disc.difference(affinity.rotate(box, angle_deg, origin=(0, 0)))
     return _Edge(name="rim", line=disc.boundary, at=Place(radius_mm=rim_mm))
 
