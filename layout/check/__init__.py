@@ -14,10 +14,9 @@ from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_h
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.music import music_fits_the_turn, something_plays
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
+from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
 from layout.check.star_wheel import (
     depth_stays_off_the_root,
-    neighbours_are_not_fouled,
-    own_star_is_met,
     star_clears_the_disc,
     star_is_reached,
     step_ends_at_the_next_point,

@@ -8,7 +8,6 @@ from shapely.geometry.base import BaseGeometry
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged
-from layout.check.star_wheel import used_tracks
 from layout.documents.movement import Feature
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
@@ -32,7 +31,7 @@ def tracks_are_on_the_disc(disc: Disc) -> list[Finding]:
             at=Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index])),
             remedy="Correct the track's radius_mm or the disc's diameter in the movement document.",
         )
-        for index in used_tracks(disc)
+        for index in disc.used_tracks
         for edge, reach_mm, limit_mm in _off_disc(disc, index)
     ]
 
@@ -57,7 +56,7 @@ def webs_to_the_rim_hold(disc: Disc) -> list[Finding]:
     rim_mm = disc.movement.disc.outer_diameter_mm / 2
     return [
         finding
-        for index in used_tracks(disc)
+        for index in disc.used_tracks
         if not _off_disc(disc, index)
         for finding in _web_to(disc, index, Code.WEB_TO_RIM, "the rim", rim_mm - _radial_reach_mm(disc, index)[1])
     ]
@@ -68,7 +67,7 @@ def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
     hole_mm, code = disc.movement.disc.centre_hole_mm / 2, Code.WEB_TO_CENTRE_HOLE
     return [
         finding
-        for index in used_tracks(disc)
+        for index in disc.used_tracks
         if not _off_disc(disc, index)
         for finding in _web_to(disc, index, code, "the centre hole", _radial_reach_mm(disc, index)[0] - hole_mm)
     ]
@@ -77,7 +76,7 @@ def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
 def keep_outs_are_clear(disc: Disc) -> list[Finding]:
     """An error where the openings of a track reach into a ring in which nothing may be cut."""
     findings: list[Finding] = []
-    for index in used_tracks(disc):
+    for index in disc.used_tracks:
         nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
         for place, ring in enumerate(disc.movement.keep_out):
             clear_mm = max(nearest_mm - ring.to_radius_mm, ring.from_radius_mm - farthest_mm)

@@ -6,7 +6,6 @@ import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged
-from layout.check.star_wheel import used_tracks
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.star_wheel import touch_zone_mm
 from layout.mechanics.turning import FULL_TURN_RAD
@@ -18,7 +17,7 @@ APART = "Leave one of the two out, or put it on another track of the same pitch.
 def star_wheels_keep_up(disc: Disc) -> list[Finding]:
     """An error for two working edges of one track nearer than its engagement arc, over the turn's end too."""
     findings: list[Finding] = []
-    for index in used_tracks(disc):
+    for index in disc.used_tracks:
         reach_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
         worth_mm = sum(disc.movement.plus_minus(pointer) for pointer in _arc_pointers(index))
         sure_mm = float(disc.turning.engagement_arc_mm[index]) + worth_mm
@@ -58,7 +57,7 @@ def dampers_recover(disc: Disc) -> list[Finding]:
     """An error for two plucks of a damped tooth nearer than its recovery, at the movement's fastest turn."""
     movement = disc.movement
     findings: list[Finding] = []
-    for index in used_tracks(disc):
+    for index in disc.used_tracks:
         if index + 1 not in movement.damped_tracks:
             continue
         for one, two, apart_rad in _neighbours(disc, index):

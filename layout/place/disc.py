@@ -39,3 +39,8 @@ class Disc:
     def radius_mm(self) -> FloatArray:
         """Shape (n,). Track radius of each projection."""
         return self.turning.radius_mm[self.track_index]
+
+    @property
+    def used_tracks(self) -> list[int]:
+        """Places of the tracks that carry a projection, from 0, in rising order."""
+        return sorted({int(index) for index in self.track_index})

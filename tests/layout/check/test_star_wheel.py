@@ -6,10 +6,9 @@ import pytest
 
 from layout.check import Code, Finding, Level, check
 from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_has_the_tool, slits_are_wide_enough
+from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
 from layout.check.star_wheel import (
     depth_stays_off_the_root,
-    neighbours_are_not_fouled,
-    own_star_is_met,
     star_clears_the_disc,
     star_is_reached,
     step_ends_at_the_next_point,
