@@ -6,6 +6,7 @@ there are too many, the oldest go. The file's name holds a digest of the program
 never gives out what an earlier one made.
 """
 
+import contextlib
 import hashlib
 import io
 import json
@@ -74,15 +75,15 @@ class LayoutCache:
         """
         path = self._path(fingerprint)
         try:
-            packed = path.read_bytes()
-            layout = _unpacked(packed)
-            os.utime(path)
+            layout = _unpacked(path.read_bytes())
         except FileNotFoundError:
             return None
         except (zipfile.BadZipFile, KeyError, ValueError) as fault:
             log.warning("%s is damaged and removed: %s", path, fault)
             path.unlink(missing_ok=True)
             return None
+        with contextlib.suppress(FileNotFoundError):  # another worker has just let it go
+            os.utime(path)
         return layout
 
     def put(self, layout: KeptLayout) -> None:
@@ -93,20 +94,21 @@ class LayoutCache:
         Raises:
             OSError: The disk is full, or the folder was taken away.
         """
+        packed = _packed(layout)
         handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
         try:
             with os.fdopen(handle, "wb") as file:
-                file.write(_packed(layout))
+                file.write(packed)
             os.replace(part, self._path(layout.fingerprint))
         except BaseException:
             Path(part).unlink(missing_ok=True)
             raise
-        self._let_go(keep=self._path(layout.fingerprint))
+        self._let_go(keep=self._path(layout.fingerprint), taken_bytes=len(packed))
 
     def _path(self, fingerprint: str) -> Path:
         return self._folder / f"{fingerprint}-{self.program}{SUFFIX}"
 
-    def _let_go(self, keep: Path) -> None:
+    def _let_go(self, keep: Path, taken_bytes: int) -> None:
         seen = []
         for path in self._folder.iterdir():
             try:
@@ -117,7 +119,7 @@ class LayoutCache:
                 path.unlink(missing_ok=True)
             elif path.suffix == SUFFIX and path != keep:
                 seen.append((known.st_mtime_ns, path.name, known.st_size, path))
-        count, taken_bytes = 1, keep.stat().st_size if keep.exists() else 0
+        count = 1  # the one just kept, even where another worker has let it go by now
         for _, _, size_bytes, path in sorted(seen, reverse=True):
             count += 1
             taken_bytes += size_bytes
