@@ -10,6 +10,7 @@ from layout.mechanics.arrays import FloatArray
 
 DECIMALS_MM = 6  # of a millimetre: a nanometre
 DECIMALS_DEG = 8  # of a degree: a tenth of a nanometre on a disc of a metre
+DECIMALS_RADIUS = 12  # of a millimetre, where an arc is given by its radius: see layout.write.svg_paths
 DECIMALS_BULGE = 12  # a bulge is a ratio: the arc then holds its radius better than the points
 
 

@@ -6,7 +6,7 @@ import numpy as np
 
 from layout.cut.plan import Circles, Entity, Lettering, Outlines, Points
 from layout.mechanics.arrays import FloatArray
-from layout.write.numbers import number, rounded
+from layout.write.numbers import DECIMALS_RADIUS, number, rounded
 
 
 def path_data(entities: list[Entity]) -> str:
@@ -62,12 +62,18 @@ def _outlines(outlines: Outlines) -> Iterator[str]:
 def _arc(radius_mm: float, bulge: float, end: str) -> str:
     # Seen with y down, as SVG counts, an anticlockwise arc (bulge above 0) is the one with sweep 0.
     large, sweep = int(abs(bulge) > 1), int(bulge < 0)
-    return f"A{number(radius_mm)} {number(radius_mm)} 0 {large} {sweep} {end}"
+    radius = number(radius_mm, DECIMALS_RADIUS)
+    return f"A{radius} {radius} 0 {large} {sweep} {end}"
 
 
 def _radii_mm(outlines: Outlines) -> list[list[float]]:
-    """Radius of the arc that starts at each vertex, c(1 + b²)/(4|b|); 0 where the piece is straight."""
-    chord = np.roll(outlines.points_mm, -1, axis=1) - outlines.points_mm
+    """Radius of the arc that starts at each vertex, c(1 + b²)/(4|b|); 0 where the piece is straight.
+
+    The chord is that of the points as they are written: a half circle whose radius is half a nanometre too large for
+    its ends has its centre a thousand times as far off.
+    """
+    written_mm = rounded(outlines.points_mm)
+    chord = np.roll(written_mm, -1, axis=1) - written_mm
     bulge = np.abs(outlines.bulges)
     curve = np.divide(1 + bulge**2, 4 * bulge, out=np.zeros_like(bulge), where=bulge > 0)
     radii: list[list[float]] = (np.hypot(chord[..., 0], chord[..., 1]) * curve).tolist()
