@@ -4,7 +4,7 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from layout.arrange.arrangement import Arrangement, LeftOut, LeftOutReason, Worth
+from layout.arrange.arrangement import NO_NOTE, Arrangement, LeftOut, LeftOutReason, Worth
 from layout.arrange.asked import NO_TRACK
 from layout.arrange.choose import choose
 from layout.arrange.comb import comb_of
@@ -66,10 +66,18 @@ def _arrangement(
         asked_s=asked_s,
         planned_s=asked_s,
         notes=tuple(wanted.notes[pluck] for pluck in order.tolist()),
+        again_of=frozen_ints(NO_NOTE for _ in order),
+        octave_semitones=frozen_ints(0 for _ in order),
         left_out=tuple(LeftOut(note=note, reason=out[note]) for note in sorted(out)),
         transposed_semitones=transposed.semitones,
         speed_factor=moments.speed_factor,
         from_s=moments.from_s,
         length_s=moments.length_s,
         worth=Worth(kept=kept, bound=bound, proved=kept == bound),
+        note_weight=frozen_ints([]),
+        highest=np.zeros(0, dtype=np.bool_),
+        lowest=np.zeros(0, dtype=np.bool_),
+        melody=np.zeros(0, dtype=np.bool_),
+        tried=(),
+        load=None,
     )

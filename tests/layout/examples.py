@@ -6,7 +6,7 @@ from typing import Any
 
 import numpy as np
 
-from layout.arrange.arrangement import Arrangement, LeftOut, Worth
+from layout.arrange.arrangement import NO_NOTE, Arrangement, LeftOut, Worth
 from layout.documents import Cutter, Movement, read_movement, shipped_cutter, shipped_movement
 from layout.documents.cutter import read_cutter
 from layout.mechanics.arrays import frozen_floats, frozen_ints
@@ -104,16 +104,25 @@ def disc_of(movement: Movement, plucks: list[tuple[int, float]], cutter: Cutter 
 def arrangement_of(plucks: list[tuple[int, float]], left_out: tuple[LeftOut, ...] = ()) -> Arrangement:
     """An arrangement with a pluck for every (track number, asked_s), note i in pluck i."""
     asked_s = frozen_floats(asked for _, asked in plucks)
+    notes = len(plucks) + len(left_out)
     return Arrangement(
         track_index=frozen_ints(track - 1 for track, _ in plucks),
         key=frozen_ints(60 for _ in plucks),
         asked_s=asked_s,
         planned_s=asked_s,
         notes=tuple((index,) for index in range(len(plucks))),
+        again_of=frozen_ints(NO_NOTE for _ in plucks),
+        octave_semitones=frozen_ints(0 for _ in plucks),
         left_out=left_out,
         transposed_semitones=0,
         speed_factor=1.0,
         from_s=0.0,
         length_s=float(np.max(asked_s, initial=0.0)),
         worth=Worth(kept=len(plucks) * 1000, bound=len(plucks) * 1000, proved=True),
+        note_weight=frozen_ints([1000] * notes),
+        highest=np.zeros(notes, dtype=np.bool_),
+        lowest=np.zeros(notes, dtype=np.bool_),
+        melody=np.zeros(notes, dtype=np.bool_),
+        tried=(),
+        load=None,
     )

@@ -5,7 +5,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from layout.arrange.arrangement import Arrangement, LeftOut, Worth
+from layout.arrange.arrangement import NO_NOTE, Arrangement, LeftOut, Worth
 from layout.check.finding import Code, Finding, Level, Place
 from layout.cut.plan import Circles, CutPlan, Drawing, Entity, LayerName, Lettering, Outlines, Points
 from layout.documents import Cutter, Movement, shipped_cutter, shipped_movement
@@ -147,12 +147,20 @@ def laid_out_of(disc: Disc, *, title: str = "Example", findings: tuple[Finding, 
         asked_s=frozen_floats(sounds_s),
         planned_s=frozen_floats(sounds_s),
         notes=tuple((note,) for note in range(count)),
+        again_of=frozen_ints([NO_NOTE] * count),
+        octave_semitones=frozen_ints([0] * count),
         left_out=(LeftOut(note=count, reason="no-such-pitch"),),
         transposed_semitones=-3,
         speed_factor=1.25,
         from_s=0.5,
         length_s=float(max(sounds_s, default=0.0)),
         worth=Worth(kept=1000 * count, bound=1000 * count + 1000, proved=False),
+        note_weight=frozen_ints([1000] * (count + 1)),
+        highest=np.ones(count + 1, dtype=np.bool_),
+        lowest=np.zeros(count + 1, dtype=np.bool_),
+        melody=np.ones(count + 1, dtype=np.bool_),
+        tried=(),
+        load=None,
     )
     plucks = Plucks(track_index=disc.track_index, sounds_s=frozen_floats(sounds_s), silent_from_s=frozen_floats([]))
     return LaidOut(
