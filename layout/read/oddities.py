@@ -32,6 +32,12 @@ class Oddity(Enum):
         "The tempo event at byte {at} is longer than 3 bytes: what follows the third was ignored.",
         "{count} tempo events are longer than 3 bytes, the first at byte {at}: what follows the third was ignored.",
     )
+    BAD_METRE = (
+        "The time signature at byte {at} is cut short, or has a numerator of 0 or a denominator above 128: "
+        "it was ignored.",
+        "{count} time signatures, the first at byte {at}, are cut short, or have a numerator of 0 or a denominator "
+        "above 128: they were ignored.",
+    )
     NEVER_ENDED = (
         "1 note has no note-off (its note-on is at byte {at}): it lasts to the end of the sequence.",
         "{count} notes have no note-off (the first note-on is at byte {at}): they last to the end of the sequence.",

@@ -7,6 +7,7 @@ from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.read.container import Chunk, Contents, read_contents
 from layout.read.limits import LIMITS
 from layout.read.messages import ChannelStatuses
+from layout.read.metre import bars_and_beats
 from layout.read.notes import NoteCollector
 from layout.read.oddities import Oddities, Oddity
 from layout.read.score import Score
@@ -96,6 +97,8 @@ def _score(contents: Contents, sequence: int, walk: SequenceWalk, times: TempoMa
     onset_tick = np.array(notes.onset_tick, dtype=np.int64)
     order = np.lexsort((key >> 7, key & 0x7F, onset_tick))
     begin = times.exact_times(onset_tick[order])
+    last_onset_tick = int(onset_tick.max()) if len(onset_tick) else None
+    bars = bars_and_beats(walk.signatures, times, last_onset_tick, oddities)
     end = times.exact_times(np.array(notes.end_tick, dtype=np.int64)[order])
     return Score(
         onset_s=frozen_floats(times.seconds(begin)),
@@ -103,6 +106,8 @@ def _score(contents: Contents, sequence: int, walk: SequenceWalk, times: TempoMa
         pitch=frozen_ints(key[order] & 0x7F),
         velocity=frozen_ints(np.array(notes.velocity, dtype=np.int64)[order]),
         channel=frozen_ints((key[order] >> 7) + 1),
+        bar_s=bars.bar_s,
+        beat_s=bars.beat_s,
         title=walk.title,
         midi_format=contents.midi_format,
         sequence=sequence,

@@ -17,6 +17,11 @@ class Score:
         pitch: Shape (n,). MIDI key numbers, 0 to 127; 60 is C4.
         velocity: Shape (n,). 1 to 127.
         channel: Shape (n,). 1 to 16.
+        bar_s: Shape (bars + 1,). Start of every bar, bar 1 at 0.0, up to and including the first past the
+            last onset; [0.0] for no notes. Exact as the onsets are: a note on a bar line has its very number.
+            4/4 at 120 where the file states nothing, or has a division in frames.
+        beat_s: Shape (beats + 1,). Start of every beat, to the same end; each bar's first included. A beat
+            is the note of the denominator; in compound metres (6/8, 9/8, 12/8) three of them.
         title: The sequence's own name (first track-name meta event), or "" where it has none.
         midi_format: 0, 1 or 2.
         sequence: Which sequence of a format 2 file was read, from 1; 1 for formats 0 and 1.
@@ -30,6 +35,8 @@ class Score:
     pitch: IntArray
     velocity: IntArray
     channel: IntArray
+    bar_s: FloatArray
+    beat_s: FloatArray
     title: str
     midi_format: int
     sequence: int

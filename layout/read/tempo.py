@@ -31,12 +31,14 @@ class TempoMap:
         begin_time: Shape (m,). Exact whole numbers (of any size) of 1 / denominator seconds.
         tick_time: Shape (m,). How long a tick of the stretch lasts, in the same unit.
         denominator: Parts of a second.
+        ticks_per_quarter: Of a quarter note; None with a division in frames, which states none.
     """
 
     begin_tick: IntArray
     begin_time: NDArray[np.object_]
     tick_time: NDArray[np.object_]
     denominator: int
+    ticks_per_quarter: int | None
 
     def exact_times(self, tick: IntArray) -> NDArray[np.object_]:
         """Exact whole numbers of 1 / denominator seconds from tick 0; empty in, empty out."""
@@ -44,6 +46,20 @@ class TempoMap:
         within = (tick - self.begin_tick[stretch]).astype(object)
         times: NDArray[np.object_] = self.begin_time[stretch] + within * self.tick_time[stretch]
         return times
+
+    def seconds_at(self, part: IntArray, *, parts_per_tick: int) -> FloatArray:
+        """The doubles nearest to the times of places that may lie between ticks.
+
+        Args:
+            part: Places in parts of a tick from tick 0; empty in, empty out.
+            parts_per_tick: How many parts a tick has.
+        """
+        begin = self.begin_tick * parts_per_tick
+        stretch = np.searchsorted(begin, part, side="right") - 1
+        within = (part - begin[stretch]).astype(object)
+        parts: NDArray[np.object_] = self.begin_time[stretch] * parts_per_tick + within * self.tick_time[stretch]
+        quotients: NDArray[np.object_] = parts / (self.denominator * parts_per_tick)
+        return quotients.astype(np.float64)
 
     def seconds(self, exact_times: NDArray[np.object_]) -> FloatArray:
         """The doubles nearest to exact times (Python divides whole numbers of any size correctly rounded)."""
@@ -58,12 +74,12 @@ class TickUnit:
     Attributes:
         denominator: Parts of a second that exact times are counted in.
         tick_time: How many of them a tick lasts where no tempo event has been met.
-        takes_tempi: Whether tempo events change it (not with a division in frames).
+        ticks_per_quarter: Of a quarter note; None with a division in frames, whose ticks no tempo event changes.
     """
 
     denominator: int
     tick_time: int
-    takes_tempi: bool
+    ticks_per_quarter: int | None
 
 
 def tick_unit(division: int, *, at: int) -> TickUnit:
@@ -81,7 +97,7 @@ def tick_unit(division: int, *, at: int) -> TickUnit:
         return _frame_unit((division >> 8) - 0x100, division & 0xFF, at)
     if division == 0:
         raise _bad_division(at, "a division of 0", "at least 1 tick per quarter note")
-    return TickUnit(denominator=division * _US_PER_S, tick_time=DEFAULT_TEMPO_US, takes_tempi=True)
+    return TickUnit(denominator=division * _US_PER_S, tick_time=DEFAULT_TEMPO_US, ticks_per_quarter=division)
 
 
 def _frame_unit(code: int, ticks_per_frame: int, at: int) -> TickUnit:
@@ -91,7 +107,7 @@ def _frame_unit(code: int, ticks_per_frame: int, at: int) -> TickUnit:
     if ticks_per_frame == 0:
         raise _bad_division(at + 1, "a division of 0 ticks per frame", "at least 1 tick per frame")
     frames, seconds = _FRAME_RATES[code]
-    return TickUnit(denominator=frames * ticks_per_frame, tick_time=seconds, takes_tempi=False)
+    return TickUnit(denominator=frames * ticks_per_frame, tick_time=seconds, ticks_per_quarter=None)
 
 
 def tempo_map(unit: TickUnit, tempi: list[tuple[int, int, int]]) -> TempoMap:
@@ -103,12 +119,12 @@ def tempo_map(unit: TickUnit, tempi: list[tuple[int, int, int]]) -> TempoMap:
             several at one tick the last by byte offset holds: by track, then by place in the track.
     """
     changes = {0: unit.tick_time}
-    if unit.takes_tempi:
+    if unit.ticks_per_quarter is not None:
         changes.update((tick, tempo_us) for tick, _, tempo_us in sorted(tempi))
-    return _joined(changes, unit.denominator)
+    return _joined(changes, unit)
 
 
-def _joined(changes: dict[int, int], denominator: int) -> TempoMap:
+def _joined(changes: dict[int, int], unit: TickUnit) -> TempoMap:
     """Join stretches, given as tick lengths by first tick in rising order, end to end."""
     begin_time: list[int] = []
     time = last_tick = tick_time = 0
@@ -120,7 +136,8 @@ def _joined(changes: dict[int, int], denominator: int) -> TempoMap:
         begin_tick=np.array(list(changes), dtype=np.int64),
         begin_time=np.array(begin_time, dtype=object),
         tick_time=np.array(list(changes.values()), dtype=object),
-        denominator=denominator,
+        denominator=unit.denominator,
+        ticks_per_quarter=unit.ticks_per_quarter,
     )
 
 

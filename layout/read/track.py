@@ -10,6 +10,7 @@ from layout.errors import MidiReadError
 from layout.read.container import Chunk
 from layout.read.faults import DAMAGED, WRITER, shown
 from layout.read.messages import ChannelStatuses
+from layout.read.metre import TimeSignature, time_signature
 from layout.read.notes import NoteCollector
 from layout.read.oddities import Oddities, Oddity
 from layout.read.quantity import read_quantity
@@ -23,6 +24,7 @@ _TRACK_NAME = 0x03
 _END_OF_TRACK = 0x2F
 _SET_TEMPO = 0x51
 _TEMPO_BYTES = 3
+_TIME_SIGNATURE = 0x58
 
 
 class SequenceWalk:
@@ -31,6 +33,7 @@ class SequenceWalk:
     Attributes:
         notes: The notes met so far.
         tempi: Tempo events as (tick, byte offset, microseconds per quarter note), in file order.
+        signatures: Time signatures as (tick, byte offset, metre), in file order.
         title: The first name with something to print in the first track walked, which is where the
             specification puts the name of a sequence; later tracks hold the names of parts.
         last_tick: Where the longest track walked so far ends.
@@ -39,6 +42,7 @@ class SequenceWalk:
     def __init__(self, statuses: ChannelStatuses, oddities: Oddities) -> None:
         self.notes = NoteCollector()
         self.tempi: list[tuple[int, int, int]] = []
+        self.signatures: list[tuple[int, int, TimeSignature]] = []
         self.title = ""
         self.last_tick = 0
         self._statuses = statuses
@@ -122,6 +126,8 @@ class SequenceWalk:
         begin, after = self._after_payload(at + 1)
         if kind == _SET_TEMPO:
             self._set_tempo(self._body[begin:after], begin, tick)
+        elif kind == _TIME_SIGNATURE:
+            self._set_metre(self._body[begin:after], self._base + begin, tick)
         elif kind == _TRACK_NAME and self._in_first_track and not self.title:
             self.title = title_of(self._body[begin:after])
         elif kind == _END_OF_TRACK:
@@ -168,6 +174,14 @@ class SequenceWalk:
                 remedy=WRITER,
             )
         self.tempi.append((tick, offset, tempo_us))
+
+    def _set_metre(self, payload: bytes, offset: int, tick: int) -> None:
+        """Take a time signature; one that cannot be followed moves no note, so it is only told."""
+        metre = time_signature(payload)
+        if metre is None:
+            self._oddities.meet(Oddity.BAD_METRE, at=offset)
+        else:
+            self.signatures.append((tick, offset, metre))
 
     def _cut_short(self, expected: str) -> MidiReadError:
         return MidiReadError(

@@ -78,12 +78,16 @@ def score_of(notes: Sequence[Note], *, duration_s: float = 0.25) -> Score:
     """A tune from (onset_s, pitch name, velocity or 64, channel or 1), in any order."""
     filled = sorted((note[0], key_of(note[1]), *[*note[2:], *(64, 1)[len(note) - 2 :]]) for note in notes)
     ordered = sorted(filled, key=lambda note: (note[0], note[1], note[3]))
+    bar_count = int(max((note[0] for note in ordered), default=-1) // 2) + 1
+    beat_s = np.arange(4 * bar_count + 1) * 0.5  # 4/4 at 120, as where a file states nothing
     return Score(
         onset_s=frozen_floats(note[0] for note in ordered),
         duration_s=frozen_floats(duration_s for _ in ordered),
         pitch=frozen_ints(note[1] for note in ordered),
         velocity=frozen_ints(note[2] for note in ordered),
         channel=frozen_ints(note[3] for note in ordered),
+        bar_s=frozen_floats(beat_s[::4]),
+        beat_s=frozen_floats(beat_s),
         title="",
         midi_format=0,
         sequence=1,

@@ -159,6 +159,8 @@ def crowded_score(count: int, length_s: float, pitches: tuple[int, int]) -> Scor
         pitch=frozen_ints(random.integers(*pitches, count)),
         velocity=frozen_ints(random.integers(1, 128, count)),
         channel=frozen_ints([1] * count),
+        bar_s=frozen_floats([0.0]),
+        beat_s=frozen_floats([0.0]),
         title="",
         midi_format=0,
         sequence=1,

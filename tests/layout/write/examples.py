@@ -16,6 +16,7 @@ from layout.mechanics.turning import turning_of
 from layout.place.disc import Disc
 from layout.play.plucks import Plucks
 from layout.read.score import Score
+from layout.report import report_on
 from layout.write.laid_out import LaidOut
 
 FERNHOLLOW = shipped_movement("fernhollow-31")
@@ -134,6 +135,8 @@ def laid_out_of(disc: Disc, *, title: str = "Example", findings: tuple[Finding, 
         pitch=frozen_ints([60] * (count + 1)),
         velocity=frozen_ints([64] * (count + 1)),
         channel=frozen_ints([1] * (count + 1)),
+        bar_s=frozen_floats([0.0]),
+        beat_s=frozen_floats([0.0]),
         title="name in the file",
         midi_format=1,
         sequence=1,
@@ -171,6 +174,7 @@ def laid_out_of(disc: Disc, *, title: str = "Example", findings: tuple[Finding, 
         disc=disc,
         plucks=plucks,
         findings=findings,
+        report=report_on(score, arrangement, disc),
     )
 
 
