@@ -13,7 +13,7 @@ from layout.arrange.plucks import Wanted, wanted_plucks
 from layout.arrange.reasons import reasons_of
 from layout.arrange.rulings import check_in_time, read_rulings
 from layout.arrange.transposing import Rules, Transposed, best_transposed
-from layout.arrange.weights import weights
+from layout.arrange.weights import weigh
 from layout.documents.movement import Movement
 from layout.documents.settings import Settings
 from layout.mechanics.arrays import frozen_floats, frozen_ints
@@ -43,7 +43,8 @@ def arrange(score: Score, movement: Movement, settings: Settings, spacing: Spaci
     moments = moments_of(score, settings, rulings.left_out, turning.free_turn_s)
     check_in_time(rulings, moments.out)
     notes = np.setdiff1d(np.arange(score.note_count), np.fromiter(moments.out, dtype=np.int64), assume_unique=True)
-    wanted = wanted_plucks(score, notes, moments.asked_s, weights(score, notes, settings.channels.lead), rulings)
+    weight = weigh(score, notes, settings.channels.lead).weight
+    wanted = wanted_plucks(score, notes, moments.asked_s, weight, rulings)
     rules = Rules(comb=comb, turning=turning, spacing=spacing, rulings=rulings)
     transposed = best_transposed(wanted, rules, settings.transpose, choose)
     reasons = reasons_of(transposed.asked, transposed.chosen, comb, turning, spacing)

@@ -10,7 +10,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from layout.arrange import Arrangement, arrange
-from layout.arrange.weights import weights
+from layout.arrange.weights import weigh
 from layout.documents import Movement, Settings, shipped_cutter, shipped_movement, shipped_movement_ids
 from layout.documents.pitch import key_of, pitch_of
 from layout.mechanics.spacing import Spacing
@@ -150,7 +150,8 @@ def test_the_worth_kept_is_that_of_the_notes_played(comb: str, notes: list[Any],
 
     gone = {"outside-passage", "ruled-out", "past-the-turn"}
     wanted = [note for note in range(score.note_count) if left_out(arrangement).get(note) not in gone]
-    worth = dict(zip(wanted, weights(score, np.array(wanted, dtype=int), asked.channels.lead).tolist(), strict=True))
+    weighed = weigh(score, np.array(wanted, dtype=int), asked.channels.lead)
+    worth = dict(zip(wanted, weighed.weight.tolist(), strict=True))
     assert arrangement.worth.kept == sum(worth[note] for pluck in arrangement.notes for note in pluck)
     assert arrangement.worth.kept <= arrangement.worth.bound <= sum(worth.values())
     assert arrangement.worth.proved == (arrangement.worth.kept == arrangement.worth.bound)
@@ -162,7 +163,7 @@ def tracks_of(movement: Movement, key: int) -> list[int]:
 
 def optimum(score: Score, movement: Movement, spacing: Spacing, semitones: int) -> int:
     """The most weight any way of putting the notes on tracks keeps, by trying them all."""
-    worth = weights(score, np.arange(score.note_count), None).tolist()
+    worth = weigh(score, np.arange(score.note_count), None).weight.tolist()
     merged: dict[tuple[float, int], int] = {}
     for onset_s, pitch, one in zip(score.onset_s.tolist(), score.pitch.tolist(), worth, strict=True):
         merged[onset_s - score.onset_s[0], pitch] = merged.get((onset_s - score.onset_s[0], pitch), 0) + one

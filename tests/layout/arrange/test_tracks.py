@@ -85,7 +85,7 @@ def test_too_little_web_on_one_track_is_the_reason_where_wheel_and_damper_would_
 
 def test_a_disc_goes_on_turning_so_the_last_pluck_is_a_neighbour_of_the_first() -> None:
     # Last at 59.3 s: 60 − 59.3 = 0.7 s before the first of the next turn; C4 needs 1 s, D4 0.75, G4 0.4.
-    notes = [(0.0, "C4", 90), (59.3, "C4"), (0.0, "D4"), (59.3, "D4", 90), (0.0, "G4"), (59.3, "G4")]
+    notes = [(0.0, "C4", 90), (59.3, "C4"), (0.0, "D4", 1), (59.3, "D4", 90), (0.0, "G4"), (59.3, "G4")]
 
     arrangement = arranged(notes, movement=comb_with(NEARLY_NO_REST))
 

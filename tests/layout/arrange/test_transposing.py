@@ -66,13 +66,13 @@ def test_the_best_transposition_keeps_the_most_weight() -> None:
 
 
 def test_weight_counts_and_not_the_number_of_notes() -> None:
-    # At 0 three soft notes sound (3 · 1430), at +1 the two-part unison on F#4 (2 · 2367) and no other.
+    # At 0 three soft notes sound (2 · 1573 + 1430), at +1 the two-part unison on F#4 (2 · 2604) and no other.
     notes = [(0.0, "C4", 1), (2.0, "C4", 1), (3.0, "G4", 1), (4.0, "F#4", 127, 1), (4.0, "F#4", 127, 2)]
 
     arrangement = arranged(notes, transpose=BEST)
 
     assert arrangement.transposed_semitones == 1
-    assert arrangement.worth.kept == 2 * 2367
+    assert arrangement.worth.kept == 2 * 2604
 
 
 @pytest.mark.parametrize(("pitch", "semitones"), [("C4", 0), ("B3", 1), ("C#4", -1), ("F4", -1), ("F#4", 1)])
