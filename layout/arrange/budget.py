@@ -1,0 +1,39 @@
+"""What a search may spend: nodes, so that answers do not depend on the machine, and time as a last resort."""
+
+from collections.abc import Callable
+from typing import Literal
+
+MOST_NODES = 20_000  # nodes of search trees, over everything searched for one disc
+
+
+class Budget:
+    """Nodes and seconds left; one for a whole search, spent as it goes."""
+
+    def __init__(
+        self, *, nodes: int = MOST_NODES, time_limit_s: float | None = None, clock: Callable[[], float] | None = None
+    ) -> None:
+        self.nodes_left = nodes
+        self._clock = clock
+        self._ends_s = None if time_limit_s is None or clock is None else clock() + time_limit_s
+
+    def spend(self, nodes: int) -> None:
+        """Take nodes off."""
+        self.nodes_left = max(self.nodes_left - nodes, 0)
+
+    def seconds_left(self) -> float | None:
+        """Seconds until the time limit, not below 0; None without one."""
+        if self._ends_s is None or self._clock is None:
+            return None
+        return max(self._ends_s - self._clock(), 0.0)
+
+    @property
+    def stopped(self) -> Literal["nodes", "time"] | None:
+        """What has run out, if anything; time first, since such an answer is not the same again."""
+        if self.seconds_left() == 0.0:
+            return "time"
+        return "nodes" if self.nodes_left == 0 else None
+
+    @property
+    def spent(self) -> bool:
+        """Whether nothing is left."""
+        return self.stopped is not None

@@ -1,0 +1,199 @@
+"""The columns and rows of the integer program over a group of plucks.
+
+One column for every spot, one for every spread of a chord, one for every ring that costs. Rows:
+at most one spot of a pluck; of spots so near on a track that each pushes the next past its window,
+only as many as the stretch holds (one or two from the start, more when a solution breaks it);
+webs; loads at every asked moment; extra plucks with their own; one spread of a chord.
+"""
+
+from collections import defaultdict
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+
+from layout.arrange.integer_program import Row
+from layout.arrange.loads import heavy_moments
+from layout.arrange.moments_kept import Overrun
+from layout.arrange.nearness import near_pairs
+from layout.arrange.problem import NO_PLUCK, Problem
+from layout.mechanics.arrays import IntArray
+
+_STEPS_TOGETHER = 2  # spots on one track that a row from the start lets through at most; longer ones come when broken
+
+
+class Columns:
+    """The columns of a group of plucks, and the rows between them."""
+
+    def __init__(self, problem: Problem, plucks: IntArray) -> None:
+        self._problem = problem
+        self._plucks = plucks.tolist()
+        ranges = [range(int(problem.first_spot[p]), int(problem.first_spot[p + 1])) for p in self._plucks]
+        self._spots = np.array([spot for one in ranges for spot in one], dtype=np.int64)
+        self._column = {spot: column for column, spot in enumerate(self._spots.tolist())}
+        self._widest_ns = int((problem.latest_ns - problem.earliest_ns).max(initial=0))
+        self._by_track = self._tracks_in_time()
+        self._rings = [(spot, before) for spot, before in self._ringing() if before]
+        self._spreads = self._spread_chords()
+        first_ring = len(self._spots)
+        first_spread = first_ring + len(self._rings)
+        self._ring_column = {spot: first_ring + place for place, (spot, _) in enumerate(self._rings)}
+        self._spread_column = {one: first_spread + place for place, one in enumerate(self._spreads)}
+        self.worth = np.concatenate(
+            [
+                problem.worth[self._spots],
+                [-int(problem.ringing_cost[spot]) for spot, _ in self._rings],
+                np.zeros(len(self._spreads), dtype=np.int64),
+            ]
+        ).astype(np.int64)
+        self.most = sum(max((int(problem.worth[spot]) for spot in one), default=0) for one in ranges)
+
+    def spots_of(self, ones: IntArray) -> tuple[int, ...]:
+        """The spots of a solution, by pluck."""
+        return tuple(self._spots[ones[ones < len(self._spots)]].tolist())
+
+    def at_one(self, spots: Sequence[int]) -> IntArray:
+        """The columns at one when these spots are chosen."""
+        chosen = set(spots)
+        ones = [self._column[spot] for spot in spots]
+        ones += [self._ring_column[spot] for spot, before in self._rings if spot in chosen and chosen & set(before)]
+        chords = {(int(self._problem.chord[self._problem.pluck[s]]), int(self._problem.spread[s])) for s in spots}
+        ones += [column for one, column in self._spread_column.items() if one in chords]
+        return np.array(sorted(ones), dtype=np.int64)
+
+    def rows(self) -> Iterator[Row]:
+        """Every row known from the start."""
+        problem, column = self._problem, self._column
+        for pluck in self._plucks:
+            mine = self._mine(pluck)
+            must = bool(problem.must_sound[pluck])
+            if len(mine) > 1 or must:
+                yield Row(columns=mine, most=1, least=1 if must else 0)
+            parent = int(problem.parent[pluck])
+            if parent != NO_PLUCK and mine:
+                theirs = self._mine(parent)
+                yield Row(columns=mine + theirs, coefficients=[1] * len(mine) + [-1] * len(theirs), most=0)
+        for spots in self._by_track.values():
+            yield from self._held_rows(spots)
+        for spot, before in self._rings:
+            for one in before:
+                yield Row(columns=[column[spot], column[one], self._ring_column[spot]], coefficients=[1, 1, -1], most=1)
+        for one, two in near_pairs(problem, self._spots):
+            yield Row(columns=[column[one], column[two]], most=1)
+        if problem.drive is not None:
+            for spots, loads in heavy_moments(problem, self._spots):
+                yield Row(columns=[column[spot] for spot in spots], coefficients=loads, most=problem.drive.limit)
+        yield from self._spread_rows()
+
+    def cut(self, overrun: Overrun) -> Row:
+        """A row that forbids what an overrun shows, and as much like it as may be."""
+        path = overrun.spots
+        if overrun.on_one_track:
+            held = self._held(path, wraps=overrun.wraps)
+            if held is not None:
+                return held
+        return Row(columns=[self._column[spot] for spot in path], most=len(path) - 1)
+
+    def _held(self, path: tuple[int, ...], *, wraps: bool) -> Row | None:
+        """All spots that lie wholly in the stretch of the path: it holds fewer than the path has."""
+        problem = self._problem
+        spots = np.array(self._by_track[int(problem.track[path[0]])], dtype=np.int64)
+        begin_ns, end_ns = int(problem.earliest_ns[path[0]]), int(problem.latest_ns[path[-1]])
+        inside = (problem.earliest_ns[spots] >= begin_ns, problem.latest_ns[spots] <= end_ns)
+        if wraps and problem.asked_ns[path[-1]] < problem.asked_ns[path[0]]:
+            spots, end_ns = spots[inside[0] | inside[1]], end_ns + problem.turn_ns
+        elif wraps:
+            return None
+        else:
+            spots = spots[inside[0] & inside[1]]
+        room = (end_ns - begin_ns) // int(problem.least_ns[spots].min()) + 1
+        return Row(columns=[self._column[s] for s in spots.tolist()], most=room) if room < len(path) else None
+
+    def _mine(self, pluck: int) -> list[int]:
+        first, last = int(self._problem.first_spot[pluck]), int(self._problem.first_spot[pluck + 1])
+        return [self._column[spot] for spot in range(first, last) if spot in self._column]
+
+    def _tracks_in_time(self) -> dict[int, list[int]]:
+        problem, spots = self._problem, self._spots
+        order = np.lexsort((problem.pluck[spots], problem.asked_ns[spots], problem.track[spots]))
+        by_track: dict[int, list[int]] = defaultdict(list)
+        for spot in spots[order].tolist():
+            by_track[int(problem.track[spot])].append(spot)
+        return by_track
+
+    def _held_rows(self, spots: list[int]) -> Iterator[Row]:
+        """Rows over the spots of one track: those pairwise too near, and those of which few fit a stretch."""
+        problem = self._problem
+        earliest = problem.earliest_ns[spots].tolist()
+        latest = problem.latest_ns[spots].tolist()
+        least_ns = int(problem.least_ns[spots].min())
+        for room in range(1, _STEPS_TOGETHER + 1):
+            last_end = -1
+            for first in range(len(spots)):
+                inside = [first]
+                place = first + 1
+                while place < len(spots) and latest[place] - earliest[first] < room * least_ns:
+                    if earliest[place] >= earliest[first]:
+                        inside.append(place)
+                    place += 1
+                plucks = {int(problem.pluck[spots[one]]) for one in inside}
+                if len(plucks) > room and inside[-1] > last_end:
+                    last_end = inside[-1]
+                    yield Row(columns=[self._column[spots[one]] for one in inside], most=room)
+        yield from self._pairs(spots, least_ns)
+
+    def _pairs(self, spots: list[int], least_ns: int) -> Iterator[Row]:
+        """Pairs that the rows over a stretch miss: longer rests of one spot, windows within windows."""
+        problem = self._problem
+        for place, one in enumerate(spots):
+            own_ns = int(problem.least_ns[one])
+            for two in spots[place + 1 :]:
+                if int(problem.asked_ns[two]) - int(problem.asked_ns[one]) > own_ns + self._widest_ns:
+                    break
+                apart_ns = int(problem.latest_ns[two]) - int(problem.earliest_ns[one])
+                inside = problem.earliest_ns[two] >= problem.earliest_ns[one]
+                if (
+                    apart_ns < own_ns
+                    and not (inside and apart_ns < least_ns)
+                    and problem.pluck[one] != problem.pluck[two]
+                ):
+                    yield Row(columns=[self._column[one], self._column[two]], most=1)
+
+    def _ringing(self) -> Iterator[tuple[int, list[int]]]:
+        """Every spot that may ring into a cost, and the earlier spots of its track that would make it."""
+        problem = self._problem
+        for track, spots in self._by_track.items():
+            ringing_ns = int(problem.ringing_ns[track])
+            for place, spot in enumerate(spots):
+                if problem.ringing_cost[spot]:
+                    since_ns = int(problem.asked_ns[spot]) - ringing_ns
+                    yield (
+                        spot,
+                        [
+                            one
+                            for one in spots[:place]
+                            if problem.asked_ns[one] > since_ns and problem.pluck[one] != problem.pluck[spot]
+                        ],
+                    )
+
+    def _spread_chords(self) -> list[tuple[int, int]]:
+        """Every (chord, spread) that a chord of the group may take, where it has a choice."""
+        problem = self._problem
+        found = {(int(problem.chord[problem.pluck[s]]), int(problem.spread[s])) for s in self._spots.tolist()}
+        several = {chord for chord, spread in found if spread}
+        return sorted(one for one in found if one[0] in several)
+
+    def _spread_rows(self) -> Iterator[Row]:
+        problem = self._problem
+        of_chord: dict[int, list[int]] = defaultdict(list)
+        for (chord, _), column in self._spread_column.items():
+            of_chord[chord].append(column)
+        for columns in of_chord.values():
+            yield Row(columns=columns, most=1)
+        for pluck in self._plucks if of_chord else ():
+            by_spread: dict[int, list[int]] = defaultdict(list)
+            for spot in range(int(problem.first_spot[pluck]), int(problem.first_spot[pluck + 1])):
+                by_spread[int(problem.spread[spot])].append(self._column[spot])
+            for spread, mine in by_spread.items():
+                taken = self._spread_column.get((int(problem.chord[pluck]), spread))
+                if taken is not None:
+                    yield Row(columns=[*mine, taken], coefficients=[1] * len(mine) + [-1], most=0)

@@ -1,0 +1,86 @@
+"""The best choice of plucks that hang together by more than time on one track: an integer program.
+
+Chains of nudges longer than the program's rows know are looked for in every solution, and
+forbidden where they are found, until a solution keeps them all.
+"""
+
+from collections import defaultdict
+from collections.abc import Sequence
+from dataclasses import dataclass
+from itertools import pairwise
+
+from layout.arrange.budget import Budget
+from layout.arrange.columns import Columns
+from layout.arrange.integer_program import Answer, IntegerProgram
+from layout.arrange.moments_kept import Moments, moments_kept
+from layout.arrange.problem import Problem
+from layout.mechanics.arrays import IntArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Coupled:
+    """What was found for a group of plucks.
+
+    Attributes:
+        spots: The spots chosen, by pluck; None where no choice was found that keeps every rule.
+        worth: What they are worth; 0 for none.
+        bound: No choice is worth more; None where no choice exists at all.
+    """
+
+    spots: tuple[int, ...] | None
+    worth: int
+    bound: int | None
+
+
+def best_coupled(problem: Problem, plucks: IntArray, budget: Budget, start: Sequence[int] = ()) -> Coupled:
+    """The best choice for these plucks, by every rule among them.
+
+    Args:
+        problem: The rules.
+        plucks: The group, rising.
+        budget: What nodes and time are left; the nodes looked at are taken off.
+        start: Spots of a choice that keeps every rule, if one is known.
+    """
+    columns = Columns(problem, plucks)
+    program = IntegerProgram(columns.worth, list(columns.rows()))
+    bound: int | None = None
+    while True:
+        answer = program.solve(
+            most_nodes=budget.nodes_left, most_s=budget.seconds_left(), start=columns.at_one(start) if start else None
+        )
+        budget.spend(answer.nodes)
+        if answer.bound is None and answer.finished:
+            return Coupled(spots=None, worth=0, bound=None)
+        bound = _lower(bound, answer)
+        if answer.ones is None:
+            return Coupled(spots=None, worth=0, bound=columns.most if bound is None else bound)
+        spots = columns.spots_of(answer.ones)
+        kept = moments_kept(problem, spots)
+        if isinstance(kept, Moments):
+            return Coupled(spots=spots, worth=worth_of(problem, spots), bound=bound)
+        if budget.spent:
+            return Coupled(spots=None, worth=0, bound=columns.most if bound is None else bound)
+        program.add([columns.cut(kept)])
+
+
+def _lower(bound: int | None, answer: Answer) -> int | None:
+    if bound is None or answer.bound is None:
+        return answer.bound if bound is None else bound
+    return min(bound, answer.bound)
+
+
+def worth_of(problem: Problem, spots: Sequence[int]) -> int:
+    """The worth of a choice, costs of ringing teeth taken off."""
+    worth = int(problem.worth[list(spots)].sum())
+    costly = [spot for spot in spots if problem.ringing_cost[spot]]
+    if not costly:
+        return worth
+    on_track: dict[int, list[int]] = defaultdict(list)
+    for spot in spots:
+        on_track[int(problem.track[spot])].append(spot)
+    for track, there in on_track.items():
+        there.sort(key=lambda spot: (int(problem.asked_ns[spot]), int(problem.pluck[spot])))
+        for before, spot in pairwise(there):
+            if problem.asked_ns[spot] - problem.asked_ns[before] < problem.ringing_ns[track]:
+                worth -= int(problem.ringing_cost[spot])
+    return worth

@@ -1,0 +1,191 @@
+"""Posing: from the plucks a tune asks for to the problem of one transposition on one comb."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from layout.arrange.asked import NO_TRACK
+from layout.arrange.board import ROUNDING_RAD
+from layout.arrange.comb import Comb
+from layout.arrange.plucks import Wanted
+from layout.arrange.problem import Beside, Drive, Lift, Problem
+from layout.arrange.weights import FADED_S
+from layout.documents.movement import Movement
+from layout.documents.settings import Settings
+from layout.mechanics.arrays import BoolArray, IntArray, frozen_ints
+from layout.mechanics.drive import lifts_of
+from layout.mechanics.spacing import Spacing
+from layout.mechanics.turning import FULL_TURN_RAD, Turning
+
+OCTAVE = 12  # semitones
+NS_PER_S = 1_000_000_000
+LOAD_GRAINS = 1000  # a newton millimetre; loads are whole thousandths, rounded up
+FIT_GRAINS = 1000  # fits are thousandths, as the factors of a weight are
+
+# How far apart the first and the last note of a chord too heavy for the drive may be put: up to each
+# of these, as far as the nudge goes. From "nobody hears it" to what a spread chord may have: the just
+# noticeable 6 ms (Friberg & Sundberg, JASA 98, 1995, from memory), then steps of our own.
+SPREAD_STEPS_MS = (6.0, 10.0, 20.0, 30.0, 50.0)  # either way of the moment asked
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Rules:
+    """What every transposition keeps to: comb and turning in whole numbers, and the settings' fits.
+
+    Attributes:
+        comb: Which tracks sound a key.
+        least_ns: Shape (tracks,). From one pluck of a track to the next.
+        besides: Tracks that may come too near to each other.
+        turn_ns: One turn.
+        free_ns: The last moment of the music on the disc.
+        drive: The load limit; None where there is none or it is not to be kept.
+        octaves: Which plucks may be moved by an octave.
+        octave_fit: What part of its weight such a pluck keeps, in thousandths.
+        ringing_cost: What part of its weight a pluck loses on a tooth that rings, in thousandths.
+        ringing_bass_cost: What part it loses on an undamped tooth under a foreign harmony.
+        undamped: Shape (tracks,). Tracks none of whose usable teeth has a damper.
+    """
+
+    comb: Comb
+    least_ns: IntArray
+    besides: tuple[Beside, ...]
+    turn_ns: int
+    free_ns: int
+    drive: Drive | None
+    octaves: str
+    octave_fit: int
+    ringing_cost: int
+    ringing_bass_cost: int
+    undamped: BoolArray
+
+
+def rules_of(movement: Movement, comb: Comb, turning: Turning, spacing: Spacing, settings: Settings) -> Rules:
+    """The rules of a movement and the settings, in whole numbers."""
+    per_rad = turning.revolution_s * NS_PER_S / FULL_TURN_RAD
+    least_ns = np.ceil((spacing.least_rad - ROUNDING_RAD) * per_rad).astype(np.int64)
+    undamped = np.array([track.track not in movement.damped_tracks for track in movement.tracks])
+    return Rules(
+        comb=comb,
+        least_ns=frozen_ints(least_ns),
+        besides=_besides(turning, spacing, per_rad),
+        turn_ns=round(turning.revolution_s * NS_PER_S),
+        free_ns=round(turning.free_turn_s * NS_PER_S),
+        drive=_drive(movement, turning) if settings.load_limit == "keep" else None,
+        octaves=settings.octave_moves,
+        octave_fit=round(settings.octave_fit * FIT_GRAINS),
+        ringing_cost=round(settings.writing.ringing_tooth_cost * FIT_GRAINS),
+        ringing_bass_cost=round(settings.writing.ringing_bass_cost * FIT_GRAINS),
+        undamped=undamped,
+    )
+
+
+def pose(wanted: Wanted, semitones: int, rules: Rules) -> Problem:
+    """The problem of playing these plucks, semitones higher.
+
+    A pluck the comb has no tooth for has no spots. No plucks give a problem of none.
+    """
+    pluck, track, fit, spread = _spots(wanted, semitones, rules)
+    asked_ns = np.rint(wanted.asked_s * NS_PER_S).astype(np.int64)
+    nudge_ns = wanted.nudge_ns
+    earliest_ns = np.minimum(np.maximum(asked_ns - nudge_ns, 0), asked_ns)
+    latest_ns = np.maximum(np.minimum(asked_ns + nudge_ns, rules.free_ns), asked_ns)
+    moment_ns = np.clip(asked_ns + wanted.shift_ns, earliest_ns, latest_ns)[pluck]
+    fit = np.where(
+        rules.undamped[track] & wanted.foreign[pluck], fit * (FIT_GRAINS - rules.ringing_bass_cost), fit * FIT_GRAINS
+    )
+    worth = np.maximum(wanted.weight[pluck] * fit // FIT_GRAINS**2, 1)
+    ringing_ns = round(FADED_S * NS_PER_S) if rules.ringing_cost else 0
+    first_spot = np.searchsorted(pluck, np.arange(len(asked_ns) + 1))
+    return Problem(
+        must_sound=wanted.must_sound,
+        parent=wanted.parent,
+        first_spot=frozen_ints(first_spot),
+        pluck=frozen_ints(pluck),
+        track=frozen_ints(track),
+        worth=frozen_ints(worth),
+        asked_ns=frozen_ints(moment_ns),
+        earliest_ns=frozen_ints(earliest_ns[pluck]),
+        latest_ns=frozen_ints(latest_ns[pluck]),
+        least_ns=frozen_ints(np.maximum(rules.least_ns[track], wanted.rest_ns[pluck])),
+        chord=frozen_ints(np.cumsum(np.diff(asked_ns, prepend=-1) > 0) - 1),
+        spread=frozen_ints(spread),
+        ringing_cost=frozen_ints(np.minimum(worth * rules.ringing_cost // FIT_GRAINS, worth - 1)),
+        ringing_ns=frozen_ints(np.full(len(rules.least_ns), ringing_ns)),
+        turn_ns=rules.turn_ns,
+        besides=rules.besides,
+        drive=rules.drive,
+    )
+
+
+def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntArray, IntArray, IntArray]:
+    """Pluck, track, fit in thousandths and spread of every spot, by (pluck, octave, track)."""
+    shifts = [0] if rules.octaves == "none" else [0, -OCTAVE, OCTAVE]
+    may_move = wanted.outer if rules.octaves == "outer" else np.full(len(wanted.pitch), rules.octaves == "all")
+    found = []
+    table = _Table(rules.comb)
+    free = wanted.on_track == NO_TRACK
+    for shift in shifts:
+        plucks = np.flatnonzero(free & (may_move | (shift == 0)))
+        of, tracks = table.tracks(plucks, wanted.pitch[plucks] + semitones + shift)
+        found.append((of, tracks, np.full(len(of), FIT_GRAINS if shift == 0 else rules.octave_fit)))
+    ruled = np.flatnonzero(~free)
+    ruled_keys = np.array([rules.comb.key_of_track[int(one)] for one in wanted.on_track[ruled]], dtype=np.int64)
+    same = ruled_keys == wanted.pitch[ruled] + semitones
+    found.append((ruled, wanted.on_track[ruled], np.where(same, FIT_GRAINS, rules.octave_fit)))
+    pluck, track, fit = (np.concatenate(part) for part in zip(*found, strict=True))
+    order = np.lexsort((track, -fit, pluck))
+    return pluck[order], track[order], fit[order], np.zeros(len(order), dtype=np.int64)
+
+
+class _Table:
+    """The tracks of every key, flat, so that many plucks are looked up at once."""
+
+    def __init__(self, comb: Comb) -> None:
+        self.keys = np.array(sorted(comb.tracks_of_key), dtype=np.int64)
+        counts = [len(comb.tracks_of_key[key]) for key in self.keys.tolist()]
+        self.flat = np.array([track for key in self.keys.tolist() for track in comb.tracks_of_key[key]], dtype=np.int64)
+        self.start = np.concatenate([[0], np.cumsum(counts)]).astype(np.int64)
+
+    def tracks(self, plucks: IntArray, keys: IntArray) -> tuple[IntArray, IntArray]:
+        """Every (pluck, track) of these plucks with these keys."""
+        at = np.searchsorted(self.keys, keys)
+        at[at == len(self.keys)] = 0
+        known = self.keys[at] == keys if len(self.keys) else np.zeros(len(keys), dtype=np.bool_)
+        plucks, at = plucks[known], at[known]
+        counts = self.start[at + 1] - self.start[at]
+        within = np.arange(counts.sum()) - np.repeat(np.cumsum(counts) - counts, counts)
+        return np.repeat(plucks, counts), self.flat[np.repeat(self.start[at], counts) + within]
+
+
+def _besides(turning: Turning, spacing: Spacing, per_rad: float) -> tuple[Beside, ...]:
+    """The forbidden stretches, moved from working-edge angles to moments.
+
+    Forbidden is from < α_outer − α_inner < to with α = s·φ + release, so with Δ the difference of
+    the releases φ_outer − φ_inner lies between s·(from − Δ) and s·(to − Δ).
+    """
+    besides = []
+    for pair in spacing.between:
+        release_rad = float(turning.release_rad[pair.outer_index] - turning.release_rad[pair.inner_index])
+        low, high = sorted(turning.direction * (end - release_rad) for end in (pair.from_rad, pair.to_rad))
+        from_ns, to_ns = round((low + ROUNDING_RAD) * per_rad), round((high - ROUNDING_RAD) * per_rad)
+        if from_ns < to_ns:
+            besides.append(
+                Beside(inner_index=pair.inner_index, outer_index=pair.outer_index, from_ns=from_ns, to_ns=to_ns)
+            )
+    return tuple(besides)
+
+
+def _drive(movement: Movement, turning: Turning) -> Drive | None:
+    lifts = lifts_of(movement, turning)
+    if lifts is None or movement.drive is None or movement.drive.torque_limit_nmm is None:
+        return None
+    return Drive(
+        lifts=tuple(
+            tuple(
+                Lift(load=int(np.ceil(lift.peak_nmm * LOAD_GRAINS)), window_ns=max(round(lift.window_s * NS_PER_S), 1))
+                for lift in track
+            )
+            for track in lifts
+        ),
+        limit=int(np.floor(movement.drive.torque_limit_nmm * LOAD_GRAINS)),
+    )

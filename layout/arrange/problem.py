@@ -1,0 +1,119 @@
+"""One transposition of a tune on one comb as a problem with a best answer, in whole numbers.
+
+A *spot* is one way to play one pluck: on one track, around one moment. Chosen is at most one spot of
+every pluck, so that the worth is greatest and
+
+1. a pluck that must sound has a spot; an extra pluck only where the pluck it belongs to has one;
+2. there are moments x, each within its spot's window [earliest, latest], at which
+   a. on a track, in the order (asked, pluck), each x is at least the spot's `least_ns` before the
+      next, and the last at least as much before the first one turn later;
+   b. two spots of `Beside` tracks stay on the side of the forbidden stretch on which they are asked;
+3. no two spots of `Beside` tracks are asked within a forbidden stretch of each other;
+4. at no asked moment do the teeth of all spots load the disc beyond the limit, every pluck counted
+   at its asked moment;
+5. all spots of one `chord` have the same `spread`: it is played together, or spread by one step.
+
+A spot loses its `ringing_cost` where an earlier one on its track is asked less than the track's
+`ringing_ns` before. Times are nanoseconds, loads thousandths of a newton millimetre, worths those
+of layout.arrange.weights: sums of whole numbers are exact, so the answer is the same everywhere.
+"""
+
+from dataclasses import dataclass
+
+from layout.mechanics.arrays import BoolArray, IntArray
+
+NO_PLUCK = -1  # stands in an array of plucks where there is none
+NO_SPOT = -1  # stands in an array of spots where there is none
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Beside:
+    """Two tracks too near to each other: where x(outer) − x(inner) must not lie, ends allowed, turn for turn."""
+
+    inner_index: int
+    outer_index: int
+    from_ns: int
+    to_ns: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Lift:
+    """One tooth of a track: its load grows in proportion from 0 to `load` over the window before the release."""
+
+    load: int
+    window_ns: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Drive:
+    """What the teeth load the disc with, by track, and what it may carry."""
+
+    lifts: tuple[tuple[Lift, ...], ...]
+    limit: int
+
+    @property
+    def widest_ns(self) -> int:
+        """The longest window of all teeth; 0 for none."""
+        return max((lift.window_ns for lifts in self.lifts for lift in lifts), default=0)
+
+    def load(self, track: int, before_ns: int) -> int:
+        """The load of a pluck on a track this long before its release, rounded up; 0 outside the window."""
+        return sum(
+            -(-lift.load * (lift.window_ns - before_ns) // lift.window_ns)
+            for lift in self.lifts[track]
+            if 0 <= before_ns < lift.window_ns
+        )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Problem:
+    """Spots of n plucks and what forbids them, as the module's text says.
+
+    Attributes:
+        must_sound: Shape (n,). Whether a ruling forbids to leave the pluck out.
+        parent: Shape (n,). The pluck an extra one belongs to, before it in order; NO_PLUCK for the others.
+        first_spot: Shape (n + 1,). Spots of pluck p are first_spot[p] to first_spot[p + 1] − 1.
+        pluck: Shape (m,). The pluck of each spot, rising.
+        track: Shape (m,). Its track, from 0.
+        worth: Shape (m,). Its weight times its fit, above 0.
+        asked_ns: Shape (m,). The moment asked for; where the chord is spread, that of the pluck in the spread chord.
+        earliest_ns: Shape (m,). The first moment it may be nudged to.
+        latest_ns: Shape (m,). The last.
+        least_ns: Shape (m,). From this spot's moment to the next on its track.
+        chord: Shape (n,). The plucks asked for at one moment have one number.
+        spread: Shape (m,). 0 where the chord is played as asked, else the step by which it is spread;
+            a spread spot's window is its one moment.
+        ringing_cost: Shape (m,). What is lost where the track still rings; below worth.
+        ringing_ns: Shape (tracks,). How long a tooth rings; 0 where that costs nothing.
+        turn_ns: One turn.
+        besides: The tracks that may come too near to each other.
+        drive: The load limit, or None where none is kept.
+    """
+
+    must_sound: BoolArray
+    parent: IntArray
+    first_spot: IntArray
+    pluck: IntArray
+    track: IntArray
+    worth: IntArray
+    asked_ns: IntArray
+    earliest_ns: IntArray
+    latest_ns: IntArray
+    least_ns: IntArray
+    chord: IntArray
+    spread: IntArray
+    ringing_cost: IntArray
+    ringing_ns: IntArray
+    turn_ns: int
+    besides: tuple[Beside, ...]
+    drive: Drive | None
+
+    @property
+    def pluck_count(self) -> int:
+        """How many plucks are asked for."""
+        return len(self.must_sound)
+
+    @property
+    def spot_count(self) -> int:
+        """How many spots they have."""
+        return len(self.pluck)

@@ -1,0 +1,153 @@
+"""The best choice for one problem: parts alone first, then together what a choice breaks together.
+
+Parts solved alone are worth at least as much as any choice for all of them: leaving rules aside only
+allows more. So their sum is a bound, and where their choices break none of the rules between parts
+they are the best. Where they do, the parts that break a rule are put into one group, which an integer
+program solves by all rules; and so on, until nothing is broken.
+"""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from layout.arrange.broken import broken_by
+from layout.arrange.budget import Budget
+from layout.arrange.by_time import Best, Stuck, best_by_time
+from layout.arrange.coupled import best_coupled, worth_of
+from layout.arrange.fitting import fitted
+from layout.arrange.parts import parts_of
+from layout.arrange.problem import Problem
+from layout.mechanics.arrays import IntArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Solved:
+    """A choice that keeps every rule.
+
+    Attributes:
+        spots: The spots chosen, by pluck.
+        worth: What they are worth.
+        bound: No choice is worth more; equal to `worth` where the choice is proved the best.
+    """
+
+    spots: tuple[int, ...]
+    worth: int
+    bound: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Impossible:
+    """No choice plays all plucks that must sound.
+
+    Attributes:
+        plucks: Plucks among which those that must sound have no room; rising.
+    """
+
+    plucks: IntArray
+
+
+@dataclass(slots=True, kw_only=True, eq=False)
+class _Group:
+    plucks: IntArray
+    spots: tuple[int, ...]
+    bound: int
+
+
+class Solving:
+    """One problem on its way to its best choice, step by step, so that hopeless ones can be left half way.
+
+    `bound` is true at every moment: no choice is worth more. It falls with every step.
+    """
+
+    def __init__(self, problem: Problem) -> None:
+        self.problem = problem
+        best = np.zeros(problem.pluck_count, dtype=np.int64)
+        np.maximum.at(best, problem.pluck, problem.worth)
+        self.bound = int(best.sum())
+        self.impossible: Impossible | None = None
+        self._silent = np.flatnonzero(problem.must_sound & (np.diff(problem.first_spot) == 0))
+        self._groups: list[_Group] | None = None
+
+    def part_by_part(self, budget: Budget) -> None:
+        """The first step: every part by itself."""
+        if len(self._silent):
+            self.impossible = Impossible(plucks=self._silent)
+            return
+        self._groups = []
+        for plucks in parts_of(self.problem):
+            group = self._alone(plucks, budget)
+            if group is None:
+                self.impossible = Impossible(plucks=plucks)
+                return
+            self._groups.append(group)
+        self.bound = min(self.bound, sum(group.bound for group in self._groups))
+
+    def together(self, budget: Budget) -> Solved | Impossible:
+        """The last step: what is broken together, solved together."""
+        if self._groups is None and self.impossible is None:
+            self.part_by_part(budget)
+        if self.impossible is not None or self._groups is None:
+            return self.impossible or Impossible(plucks=self._silent)
+        while broken := broken_by(self.problem, self._chosen()):
+            if budget.spent:
+                return self._as_it_stands()
+            for plucks in self._joined(broken):
+                group = self._as_one(plucks, budget)
+                if group is None:
+                    return Impossible(plucks=plucks)
+                self._groups.append(group)
+            self.bound = min(self.bound, sum(group.bound for group in self._groups))
+        spots = self._chosen()
+        worth = worth_of(self.problem, spots)
+        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
+
+    def _alone(self, plucks: IntArray, budget: Budget) -> _Group | None:
+        found = best_by_time(self.problem, plucks)
+        if isinstance(found, Stuck):
+            return None
+        if isinstance(found, Best):
+            return _Group(plucks=plucks, spots=found.spots, bound=found.worth)
+        return self._as_one(plucks, budget)
+
+    def _as_one(self, plucks: IntArray, budget: Budget) -> _Group | None:
+        start = fitted(self.problem, plucks, ())
+        found = best_coupled(self.problem, plucks, budget, start or ())
+        if found.bound is None:
+            return None
+        best = found.spots
+        if start is not None and (best is None or worth_of(self.problem, start) > found.worth):
+            best = start
+        if best is None:
+            return None
+        return _Group(plucks=plucks, spots=best, bound=found.bound)
+
+    def _chosen(self) -> tuple[int, ...]:
+        return tuple(sorted(spot for group in self._groups or () for spot in group.spots))
+
+    def _joined(self, broken: Iterable[Sequence[int]]) -> list[IntArray]:
+        """Take the groups with a part in a breach off the list, and give their plucks, joined as the breaches say."""
+        groups = self._groups or []
+        group_of = {pluck: place for place, group in enumerate(groups) for pluck in group.plucks.tolist()}
+        sets: list[set[int]] = []
+        for spots in broken:
+            joined = {group_of[int(self.problem.pluck[spot])] for spot in spots}
+            apart = []
+            for one in sets:
+                if one & joined:
+                    joined |= one
+                else:
+                    apart.append(one)
+            sets = [*apart, joined]
+        taken = set().union(*sets)
+        self._groups = [group for place, group in enumerate(groups) if place not in taken]
+        return [np.sort(np.concatenate([groups[place].plucks for place in sorted(one)])) for one in sets]
+
+    def _as_it_stands(self) -> Solved | Impossible:
+        """The choice so far, less what breaks a rule."""
+        plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
+        spots = fitted(self.problem, plucks, self._chosen())
+        if spots is None:
+            return Impossible(plucks=plucks)
+        worth = worth_of(self.problem, spots)
+        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
