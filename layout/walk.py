@@ -1,14 +1,17 @@
 """The walk, composed once for the command and the service: bytes in, files out.
 
-read → arrange → place → play → check → cut → write; and, from a drawing, read back → play → check.
+read → arrange → place → play → check → report → cut → write; and, from a drawing, read back → play → check.
 """
 
 import hashlib
 import json
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+
+import numpy as np
 
 from layout.arrange import arrange
+from layout.arrange.arrangement import Arrangement
 from layout.check import check
 from layout.check.finding import Finding, stands
 from layout.cut import plan_cuts
@@ -25,12 +28,13 @@ from layout.play.plucks import Plucks
 from layout.read import read_score
 from layout.read.limits import LIMITS
 from layout.read_back import read_back
+from layout.report import report_on
 from layout.version import ENGINE_VERSION
-from layout.write import write_dxf, write_hits, write_layout_json, write_svg
+from layout.write import write_dxf, write_hits, write_layout_json, write_report, write_svg
 from layout.write.laid_out import LaidOut
 
 CUTTING_FILES = ("disc.dxf", "hits.csv")
-FILES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json")
+FILES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json")
 
 LIMITS_OF_READING = limits_told(LIMITS, prefix="tune_")
 
@@ -40,6 +44,7 @@ _WRITERS: dict[str, Callable[[CutPlan, LaidOut], bytes]] = {
     "disc.svg": write_svg,
     "hits.csv": lambda plan, laid_out: write_hits(plan, laid_out.disc),
     "layout.json": lambda plan, laid_out: write_layout_json(laid_out, despite_findings=plan.not_good),
+    "report.json": lambda _, laid_out: write_report(laid_out),
 }
 
 
@@ -86,7 +91,7 @@ def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings)
     score = read_score(tune, sequence=settings.sequence)
     turning = turning_of(movement)
     spacing = spacing_of(movement, turning, pattern_of(movement, cutter), cutter.min_web_mm)
-    arrangement = arrange(score, movement, settings, spacing)
+    arrangement = _with_weights(arrange(score, movement, settings, spacing), score.note_count)
     disc = place(arrangement, movement, cutter)
     return LaidOut(
         title=settings.title or score.title or "untitled tune",
@@ -96,7 +101,19 @@ def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings)
         disc=disc,
         plucks=play(disc),
         findings=check(disc, arrangement),
+        report=report_on(score, arrangement, disc),
     )
+
+
+def _with_weights(arrangement: Arrangement, note_count: int) -> Arrangement:
+    # Only until the arranger gives the weights it works with: here all notes asked for are plain inner ones.
+    if len(arrangement.note_weight) == note_count:
+        return arrangement
+    not_asked = ("outside-passage", "ruled-out", "past-the-turn")
+    weight = np.full(note_count, 1000, dtype=np.int64)
+    weight[[left.note for left in arrangement.left_out if left.reason in not_asked]] = 0
+    none = np.zeros(note_count, dtype=np.bool_)
+    return replace(arrangement, note_weight=weight, highest=none, lowest=none, melody=none)
 
 
 def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:

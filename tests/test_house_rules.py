@@ -23,6 +23,7 @@ TYPE_MODULES = {
     "place": "layout.place.disc",
     "play": "layout.play.plucks",
     "check": "layout.check.finding",
+    "report": "layout.report.report",
     "cut": "layout.cut.plan",
     "write": None,
     "read_back": "layout.read_back.reading",

@@ -2,6 +2,7 @@
 
 from dataclasses import dataclass
 from enum import StrEnum
+from typing import Any
 
 
 class Level(StrEnum):
@@ -100,3 +101,25 @@ class Finding:
 def stands(findings: tuple[Finding, ...]) -> bool:
     """Whether an error-level finding stands, so that the disc is not good to cut."""
     return any(finding.level is Level.ERROR for finding in findings)
+
+
+def finding_told(finding: Finding) -> dict[str, Any]:
+    """The finding as every JSON of ours writes it; "at" holds only what applies."""
+    return {
+        "code": finding.code.value,
+        "level": finding.level.value,
+        "message": finding.message,
+        "measured": finding.measured,
+        "limit": finding.limit,
+        "unit": finding.unit,
+        "at": _place_told(finding.at),
+        "remedy": finding.remedy,
+    }
+
+
+def _place_told(at: Place) -> dict[str, Any]:
+    numbers = {"radius_mm": at.radius_mm, "angle_deg": at.angle_deg, "sounds_s": at.sounds_s}
+    indices = {"tracks": list(at.tracks), "projections": list(at.projections)}
+    return {name: value for name, value in indices.items() if value} | {
+        name: value for name, value in numbers.items() if value is not None
+    }

@@ -7,6 +7,7 @@ from layout.check.finding import Finding, stands
 from layout.place.disc import Disc
 from layout.play.plucks import Plucks
 from layout.read.score import Score
+from layout.report.report import Report
 
 NOT_GOOD = "NOT GOOD TO CUT"
 
@@ -23,6 +24,7 @@ class LaidOut:
         disc: Where its projections are; projection i is pluck i of the arrangement.
         plucks: When they sound; pluck i is projection i.
         findings: What is wrong or near to wrong.
+        report: What the disc keeps of the tune, and what that cost.
     """
 
     title: str
@@ -32,6 +34,7 @@ class LaidOut:
     disc: Disc
     plucks: Plucks
     findings: tuple[Finding, ...]
+    report: Report
 
     @property
     def good_to_cut(self) -> bool:

@@ -1,21 +1,25 @@
 """layout.json: everything about a layout, for programs. Fields may be added, never renamed."""
 
-import json
 import math
 from typing import Any
 
-from layout.check.finding import Finding, Place
+import numpy as np
+
+from layout.arrange.arrangement import NO_NOTE, Arrangement
+from layout.check.finding import finding_told
 from layout.documents.pitch import pitch_of
 from layout.read.score import Score
 from layout.version import ENGINE_VERSION
+from layout.write.json_lines import json_lines
 from layout.write.laid_out import LaidOut
+from layout.write.report_json import worth_record
 
 FORMAT = "discwright-layout/1"
 Record = dict[str, Any]  # JSON: what it holds is said by layout_record
 
 
 def write_layout_json(laid_out: LaidOut, *, despite_findings: str | None) -> bytes:
-    """The layout as UTF-8 JSON, one note, projection, note left out or finding to a line.
+    """The layout as UTF-8 JSON, one bar, note, projection, note left out or finding to a line.
 
     Args:
         laid_out: The layout.
@@ -24,25 +28,23 @@ def write_layout_json(laid_out: LaidOut, *, despite_findings: str | None) -> byt
     Raises:
         ValueError: A number of the layout is not finite: a fault of the program, never of an input.
     """
-    record = layout_record(laid_out, despite_findings=despite_findings)
-    lines = ",\n".join(f"{_json(name)}: {_value(value)}" for name, value in record.items())
-    # JSON writes half a surrogate pair as \udXXX, which is also what this error handler writes.
-    return f"{{\n{lines}\n}}\n".encode("utf-8", errors="backslashreplace")
+    return json_lines(layout_record(laid_out, despite_findings=despite_findings))
 
 
 def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
     """The layout in plain dictionaries and lists, in the order it is written.
 
     Angles are working edges' on the disc seen from the label side, never mirrored, in [0, 360);
-    times run from the start of the music on the disc, but for the notes read, which keep the tune's
-    own times and pitches. Numbers are unrounded.
+    times run from the start of the music on the disc, but for the bars and notes read, which keep the tune's
+    own times and pitches. A bar starts at its start_s; the last one starts past the last onset. A note not
+    asked for has weight 0 and no voice. Only an extra pluck has `again_of`. Numbers are unrounded.
 
     Args:
         laid_out: The layout.
         despite_findings: The reason for which a disc with an error is cut all the same; None where none is.
     """
     arrangement, movement, cutter = laid_out.arrangement, laid_out.disc.movement, laid_out.disc.cutter
-    score, worth = laid_out.score, arrangement.worth
+    score = laid_out.score
     return {
         "format": FORMAT,
         "title": laid_out.title,
@@ -66,47 +68,37 @@ def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
         "transposed_semitones": arrangement.transposed_semitones,
         "speed_factor": arrangement.speed_factor,
         "from_s": arrangement.from_s,
-        "worth": {"kept": worth.kept, "bound": worth.bound, "proved": worth.proved},
-        "notes": _notes(score),
+        "worth": worth_record(arrangement.worth),
+        "bars": [{"bar": place + 1, "start_s": start_s} for place, start_s in enumerate(score.bar_s.tolist())],
+        "notes": _notes(score, arrangement),
         "projections": _projections(laid_out),
         "left_out": [{"note": left.note, "reason": left.reason} for left in arrangement.left_out],
-        "findings": [finding_record(finding) for finding in laid_out.findings],
+        "findings": [finding_told(finding) for finding in laid_out.findings],
     }
 
 
-def finding_record(finding: Finding) -> Record:
-    """One finding; "at" holds only what applies."""
-    return {
-        "code": finding.code.value,
-        "level": finding.level.value,
-        "message": finding.message,
-        "measured": finding.measured,
-        "limit": finding.limit,
-        "unit": finding.unit,
-        "at": _place(finding.at),
-        "remedy": finding.remedy,
-    }
-
-
-def _place(at: Place) -> Record:
-    numbers = {"radius_mm": at.radius_mm, "angle_deg": at.angle_deg, "sounds_s": at.sounds_s}
-    indices = {"tracks": list(at.tracks), "projections": list(at.projections)}
-    return {name: value for name, value in indices.items() if value} | {
-        name: value for name, value in numbers.items() if value is not None
-    }
-
-
-def _notes(score: Score) -> list[Record]:
+def _notes(score: Score, arrangement: Arrangement) -> list[Record]:
     rows = zip(
         score.onset_s.tolist(),
         score.duration_s.tolist(),
         map(pitch_of, score.pitch.tolist()),
         score.velocity.tolist(),
         score.channel.tolist(),
+        arrangement.note_weight.tolist(),
+        _voices(arrangement),
+        arrangement.melody.tolist(),
         strict=True,
     )
-    names = ("onset_s", "duration_s", "pitch", "velocity", "channel")
+    names = ("onset_s", "duration_s", "pitch", "velocity", "channel", "weight", "voice", "melody")
     return [{"note": note} | dict(zip(names, row, strict=True)) for note, row in enumerate(rows)]
+
+
+def _voices(arrangement: Arrangement) -> list[str | None]:
+    """The voice of each note asked for, the top line's where it is the lowest too; None for the others."""
+    asked = arrangement.note_weight > 0
+    conditions = [~asked, arrangement.highest, arrangement.lowest]
+    places = np.select(conditions, [0, 1, 2], default=3)
+    return [(None, "highest", "lowest", "inner")[place] for place in places.tolist()]
 
 
 def _projections(laid_out: LaidOut) -> list[Record]:
@@ -123,7 +115,9 @@ def _projections(laid_out: LaidOut) -> list[Record]:
         disc.edge_angle_rad.tolist(),
         arrangement.asked_s.tolist(),
         laid_out.plucks.sounds_s.tolist(),
+        arrangement.octave_semitones.tolist(),
         arrangement.notes,
+        arrangement.again_of.tolist(),
         strict=True,
     )
     return [
@@ -135,17 +129,9 @@ def _projections(laid_out: LaidOut) -> list[Record]:
             "angle_deg": math.degrees(angle_rad),
             "asked_s": asked_s,
             "sounds_s": sounds_s,
+            "octave_semitones": octave_semitones,
             "notes": list(notes),
         }
-        for track, radius_mm, angle_rad, asked_s, sounds_s, notes in rows
+        | ({} if again_of == NO_NOTE else {"again_of": again_of})
+        for track, radius_mm, angle_rad, asked_s, sounds_s, octave_semitones, notes, again_of in rows
     ]
-
-
-def _value(value: Any) -> str:
-    if isinstance(value, list) and value:
-        return "[\n" + ",\n".join(_json(entry) for entry in value) + "\n]"
-    return _json(value)
-
-
-def _json(value: Any) -> str:
-    return json.dumps(value, ensure_ascii=False, allow_nan=False)

@@ -17,6 +17,7 @@ ENDINGS = {
     "disc.svg": ".svg",
     "hits.csv": "_hits.csv",
     "layout.json": "_layout.json",
+    "report.json": "_report.json",
 }
 
 

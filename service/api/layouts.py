@@ -24,6 +24,7 @@ MEDIA_TYPES = {
     "disc.svg": "image/svg+xml",
     "hits.csv": "text/csv; charset=utf-8",
     "layout.json": JSON_MEDIA_TYPE,
+    "report.json": JSON_MEDIA_TYPE,
 }
 # What a POST can answer with, by media type; the first where the client does not mind.
 ANSWERS: dict[str, str | None] = {JSON_MEDIA_TYPE: None, "image/svg+xml": "disc.svg", "image/vnd.dxf": "disc.dxf"}

@@ -7,11 +7,12 @@ from typing import Any
 
 import numpy as np
 
+from layout.check.finding import finding_told
 from layout.documents import Movement
 from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter
 from service.commands.errors import ERROR_STANDS, GOOD
 from service.commands.files_in import read_file, read_named_cutter, read_named_movement
-from service.commands.findings import finding_lines, finding_told, thousandths
+from service.commands.findings import finding_lines, thousandths
 from service.commands.output import aligned, say, say_json
 from service.planner import CheckedDrawing
 

@@ -1,19 +1,10 @@
-"""Findings, told to a person and written for programs."""
+"""Findings, told to a person."""
 
 from collections.abc import Iterable, Mapping
-from dataclasses import asdict
 from typing import Any
-
-from layout.check.finding import Finding
 
 LEVELS = ("error", "warning", "advice")
 SHOWN_OF_A_KIND = 5  # findings; more of one kind fill the screen and say nothing new
-
-
-def finding_told(finding: Finding) -> dict[str, Any]:
-    """A finding as layout.json writes it; `at` holds only what applies."""
-    place = {name: value for name, value in asdict(finding.at).items() if value not in (None, ())}
-    return {**asdict(finding), "code": finding.code.value, "level": finding.level.value, "at": place}
 
 
 def finding_lines(findings: Iterable[Mapping[str, Any]]) -> list[str]:

@@ -2,7 +2,6 @@
 
 import argparse
 import json
-from collections import Counter
 from pathlib import Path
 from typing import Any
 
@@ -14,11 +13,13 @@ from service.commands.files_in import read_file, read_named_cutter, read_named_m
 from service.commands.files_out import write_files
 from service.commands.findings import finding_lines
 from service.commands.output import say, say_json
+from service.commands.report_lines import kept_lines, report_lines
 from service.reason import ReasonError, checked_reason
 
 ABOUT = (
     "Make the files of a disc from a MIDI file. They are disc.dxf and hits.csv (to cut), record.dxf (to read, "
-    "never to cut), disc.svg (to look at) and layout.json (for programs). Ends with 0 where the disc is good to "
+    "never to cut), disc.svg (to look at), layout.json (for programs) and report.json (what is kept, and what that "
+    "cost; told here in short). Ends with 0 where the disc is good to "
     "cut, with 3 where an error-level finding stands (disc.dxf and hits.csv are then kept back), with 2 where the "
     "input cannot be used (nothing is written)."
 )
@@ -58,7 +59,7 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     laid_out = tools.planner.lay_out(tune, movement, cutter, settings)
     files = tools.planner.files_of(laid_out, not_good=reason)
     removed = write_files(asked.out, files)
-    layout = json.loads(files["layout.json"])
+    layout, report = json.loads(files["layout.json"]), json.loads(files["report.json"])
     kept_back = [name for name in FILES if name not in files]
     if asked.json:
         paths = {name: str(asked.out / name) for name in files}
@@ -69,10 +70,12 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
                 "kept_back": kept_back,
                 "removed": list(removed),
                 "layout": layout,
+                "report": report,
             }
         )
     else:
-        say([laid_out.title, *layout_lines(layout, movement, cutter), *finding_lines(layout["findings"])])
+        say([laid_out.title, *layout_lines(layout, report, movement, cutter), *report_lines(report)])
+        say(finding_lines(layout["findings"]))
         say(["good to cut" if laid_out.good_to_cut else "NOT GOOD TO CUT"])
         say(_file_lines(asked.out, files, removed))
     return GOOD if laid_out.good_to_cut else ERROR_STANDS
@@ -85,30 +88,25 @@ def _reason(text: str | None, tools: Tools) -> str | None:
         raise CommandError(f"--despite-findings: {error}") from error
 
 
-def layout_lines(layout: dict[str, Any], movement: Movement, cutter: Cutter) -> list[str]:
-    """Lines that say what a disc keeps of a tune.
+def layout_lines(layout: dict[str, Any], report: dict[str, Any], movement: Movement, cutter: Cutter) -> list[str]:
+    """Lines that say what a disc keeps of a tune, and how it plays it.
 
     Args:
         layout: Content of layout.json.
+        report: Content of report.json.
         movement: The movement the disc is for.
         cutter: The cutter that makes it.
     """
-    kept = sum(len(projection["notes"]) for projection in layout["projections"])
-    left_out = layout["left_out"]
     side = layout["drawn_from"].replace("-", " ")
-    lines = [
+    return [
         f"  movement    {movement.id}, revision {movement.revision}: {movement.title}",
         f"  cutter      {cutter.id}: {cutter.title}; drawn from the {side}",
-        f"  kept        {kept} of {kept + len(left_out)} notes, as {len(layout['projections'])} projections",
+        *kept_lines(report),
+        f"  transposed  {layout['transposed_semitones']:+d} semitones",
+        f"  speed       {layout['speed_factor']:.4g} times as written",
+        f"  starts at   {layout['from_s']:.2f} s of the tune",
+        *(f"  odd in the tune: {warning}" for warning in layout["read"]["warnings"]),
     ]
-    if left_out:
-        reasons = sorted(Counter(note["reason"] for note in left_out).items())
-        tally = ", ".join(f"{count} {reason}" for reason, count in reasons)
-        lines.append(f"  left out    {len(left_out)}: {tally}")
-    lines.append(f"  transposed  {layout['transposed_semitones']:+d} semitones")
-    lines.append(f"  speed       {layout['speed_factor']:.4g} times as written")
-    lines.append(f"  starts at   {layout['from_s']:.2f} s of the tune")
-    return lines + [f"  odd in the tune: {warning}" for warning in layout["read"]["warnings"]]
 
 
 def _file_lines(folder: Path, files: dict[str, bytes], removed: tuple[str, ...]) -> list[str]:

@@ -44,7 +44,7 @@ def test_the_cutting_files_are_kept_back_while_an_error_stands() -> None:
     kept = walk.files_of(too_long)
 
     assert not too_long.good_to_cut
-    assert set(kept) == {"record.dxf", "disc.svg", "layout.json"}
+    assert set(kept) == {"record.dxf", "disc.svg", "layout.json", "report.json"}
 
 
 def test_a_reason_gives_every_file_and_marks_it() -> None:

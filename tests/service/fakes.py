@@ -40,6 +40,56 @@ NEAR_RIM = Finding(
 )
 
 
+ALL_KEPT = {
+    "note_count": 2,
+    "kept_count": 2,
+    "asked_weight": 2400,
+    "kept_weight": 2400,
+    "octave_count": 0,
+    "nudged_count": 0,
+    "largest_nudge_ms": 0.0,
+    "mean_nudge_ms": 0.0,
+    "covered_count": 0,
+    "left_out": {},
+}
+NOTHING_ASKED = ALL_KEPT | {"note_count": 0, "kept_count": 0, "asked_weight": 0, "kept_weight": 0}
+ONE_LOST = ALL_KEPT | {
+    "asked_weight": 2000,
+    "kept_weight": 1000,
+    "kept_count": 1,
+    "left_out": {"no-such-pitch": 1},
+}
+# What report.json holds of a tune of five notes: three are kept, one nudged, one is left out, one is outside.
+REPORT: dict[str, Any] = {
+    "worth": {"kept": 3400, "bound": 4000, "proved": False, "stopped": None},
+    "projection_count": 2,
+    "extra_pluck_count": 0,
+    "total": ONE_LOST
+    | {
+        "note_count": 4,
+        "kept_count": 3,
+        "asked_weight": 4400,
+        "kept_weight": 3400,
+        "nudged_count": 1,
+        "largest_nudge_ms": 5.0,
+        "mean_nudge_ms": 5.0,
+        "covered_count": 1,
+    },
+    "highest": ONE_LOST,
+    "lowest": ALL_KEPT | {"nudged_count": 1, "largest_nudge_ms": 5.0, "mean_nudge_ms": 5.0, "covered_count": 1},
+    "inner": NOTHING_ASKED,
+    "melody": None,
+    "not_asked": {"outside-passage": 1},
+    "worst_bars": [
+        {"bar": 2, "start_s": 1.5, "note_count": 3, "lost_count": 1, "asked_weight": 3000, "lost_weight": 1000}
+    ],
+    "tried": [],
+    "load": None,
+    "no_load_because": "nothing is lifted",
+    "tracks": [],
+}
+
+
 @dataclass
 class FakeLayout:
     """What the fake planner lays out."""
@@ -121,7 +171,7 @@ class FakePlanner:
             names = ["record.dxf", "disc.svg"]
         files = {name: f"{name} of {laid_out.title}{mark}".encode() for name in names}
         record = laid_out.record | {"despite_findings": not_good if mark else None}
-        return {**files, "layout.json": json.dumps(record).encode()}
+        return {**files, "layout.json": json.dumps(record).encode(), "report.json": json.dumps(REPORT).encode()}
 
     def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> FakeReading:
         good = all(finding.level is not Level.ERROR for finding in self.findings)

@@ -2,8 +2,10 @@ import json
 import math
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
+from layout.arrange.arrangement import NO_NOTE
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.version import ENGINE_VERSION
 from layout.write import layout_record, write_layout_json
@@ -26,7 +28,7 @@ from tests.layout.write.examples import (
 PROMISED = [
     *("format", "title", "fingerprint", "good_to_cut", "despite_findings", "movement", "cutter", "engine_version"),
     *("read", "revolution_s", "turns", "drawn_from", "transposed_semitones", "speed_factor", "from_s", "worth"),
-    *("notes", "projections", "left_out", "findings"),
+    *("bars", "notes", "projections", "left_out", "findings"),
 ]
 
 
@@ -42,7 +44,7 @@ def test_the_fields_stand_in_their_order_with_what_the_layout_holds() -> None:
     assert record["engine_version"] == ENGINE_VERSION
     assert (record["revolution_s"], record["turns"], record["drawn_from"]) == (66, "clockwise", "label-side")
     assert (record["transposed_semitones"], record["speed_factor"], record["from_s"]) == (-3, 1.25, 0.5)
-    assert record["worth"] == {"kept": 1000, "bound": 2000, "proved": False}
+    assert record["worth"] == {"kept": 1000, "bound": 2000, "proved": False, "stopped": None}
     assert record["left_out"] == [{"note": 1, "reason": "no-such-pitch"}]
     assert record["read"] == {
         "midi_format": 1,
@@ -76,12 +78,68 @@ def test_every_note_read_stands_on_its_own_line_as_it_was_written() -> None:
     written = write_layout_json(replace(laid_out, score=score), despite_findings=None).decode()
 
     # C4 is key 60, so key 61 is C#4 and key 70 Bb4 (MIDI 1.0 key numbers; A4 = 69)
+    voice = {"weight": 1000, "voice": "highest", "melody": True}
     notes = [
-        {"note": 0, "onset_s": 0.25, "duration_s": 0.5, "pitch": "C#4", "velocity": 1, "channel": 1},
-        {"note": 1, "onset_s": 7.5, "duration_s": 1 / 3, "pitch": "Bb4", "velocity": 127, "channel": 16},
+        {"note": 0, "onset_s": 0.25, "duration_s": 0.5, "pitch": "C#4", "velocity": 1, "channel": 1} | voice,
+        {"note": 1, "onset_s": 7.5, "duration_s": 1 / 3, "pitch": "Bb4", "velocity": 127, "channel": 16} | voice,
     ]
     assert json.loads(written)["notes"] == notes
     assert all(f"\n{json.dumps(note)}" in written for note in notes)
+
+
+def test_every_bar_stands_with_its_number_and_its_start() -> None:
+    laid_out = laid_out_of(ONE_FOLD)
+    score = replace(laid_out.score, bar_s=frozen_floats([0.0, 1.5, 10 / 3]))
+
+    bars = layout_record(replace(laid_out, score=score), despite_findings=None)["bars"]
+
+    assert bars == [{"bar": 1, "start_s": 0.0}, {"bar": 2, "start_s": 1.5}, {"bar": 3, "start_s": 10 / 3}]
+
+
+def test_a_note_tells_its_weight_and_its_voice_and_one_not_asked_for_has_neither() -> None:
+    laid_out = laid_out_of(THREE_LANCES)  # four notes
+    arrangement = replace(
+        laid_out.arrangement,
+        note_weight=frozen_ints([2000, 1400, 900, 0]),
+        highest=np.array([True, False, False, False]),
+        lowest=np.array([True, True, False, False]),  # what is highest as well is of the top line
+        melody=np.array([False, False, True, False]),
+    )
+
+    notes = layout_record(replace(laid_out, arrangement=arrangement), despite_findings=None)["notes"]
+
+    assert [(note["weight"], note["voice"], note["melody"]) for note in notes] == [
+        (2000, "highest", False),
+        (1400, "lowest", False),
+        (900, "inner", True),
+        (0, None, False),
+    ]
+
+
+def test_only_an_extra_pluck_says_which_note_it_repeats() -> None:
+    laid_out = laid_out_of(THREE_LANCES)
+    arrangement = replace(
+        laid_out.arrangement,
+        notes=((0, 1), (), (2,)),
+        again_of=frozen_ints([NO_NOTE, 0, NO_NOTE]),
+        octave_semitones=frozen_ints([0, 12, -12]),
+    )
+
+    projections = layout_record(replace(laid_out, arrangement=arrangement), despite_findings=None)["projections"]
+
+    assert [projection.get("again_of") for projection in projections] == [None, 0, None]
+    assert ["again_of" in projection for projection in projections] == [False, True, False]
+    assert [projection["notes"] for projection in projections] == [[0, 1], [], [2]]
+    assert [projection["octave_semitones"] for projection in projections] == [0, 12, -12]
+
+
+def test_a_search_that_was_stopped_says_by_what() -> None:
+    laid_out = laid_out_of(ONE_FOLD)
+    stopped = replace(laid_out.arrangement, worth=replace(laid_out.arrangement.worth, stopped="nodes"))
+
+    record = layout_record(replace(laid_out, arrangement=stopped), despite_findings=None)
+
+    assert record["worth"]["stopped"] == "nodes"
 
 
 def test_a_projection_says_where_it_is_when_it_sounds_and_what_it_plays() -> None:
@@ -89,7 +147,7 @@ def test_a_projection_says_where_it_is_when_it_sounds_and_what_it_plays() -> Non
 
     [projection] = json.loads(write_layout_json(laid_out, despite_findings=None))["projections"]
 
-    fields = ["track", "teeth", "pitch", "radius_mm", "angle_deg", "asked_s", "sounds_s", "notes"]
+    fields = ["track", "teeth", "pitch", "radius_mm", "angle_deg", "asked_s", "sounds_s", "octave_semitones", "notes"]
     assert list(projection) == fields
     assert (projection["track"], projection["teeth"], projection["pitch"]) == (5, [5], "Bb4")
     assert (projection["radius_mm"], projection["angle_deg"]) == (46.48, 90.0)

@@ -10,11 +10,11 @@ from pathlib import Path
 import pytest
 
 TOP = Path(__file__).parents[3]
-NAMES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json")
+NAMES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json")
 PROGRAM = """
 import hashlib, importlib.util, json, sys
 from layout.cut import plan_cuts
-from layout.write import write_dxf, write_hits, write_layout_json, write_svg
+from layout.write import write_dxf, write_hits, write_layout_json, write_report, write_svg
 
 spec = importlib.util.spec_from_file_location("examples", sys.argv[1])
 examples = importlib.util.module_from_spec(spec)
@@ -30,6 +30,7 @@ for movement, cutter in ((examples.FERNHOLLOW, examples.LASER), (examples.MOSSBR
         write_svg(plan, laid_out),
         write_hits(plan, disc),
         write_layout_json(laid_out, despite_findings=plan.not_good),
+        write_report(laid_out),
     )
     print(json.dumps([hashlib.sha256(file).hexdigest() for file in files]))
 """

@@ -24,6 +24,7 @@ def disc(title: str = "Harvest Dance", *, not_good: bool = False) -> NamedDisc:
         ("disc.svg", ".svg"),
         ("hits.csv", "_hits.csv"),
         ("layout.json", "_layout.json"),
+        ("report.json", "_report.json"),
     ],
 )
 def test_a_name_tells_all_a_shop_must_know(file_name: str, ending: str) -> None:

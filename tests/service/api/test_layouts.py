@@ -41,7 +41,7 @@ def test_every_link_leads_to_its_file(client: Client) -> None:
 
     answers = {name: client.get(path) for name, path in links.items()}
 
-    assert list(links) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json"]
+    assert list(links) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json"]
     assert {name: answer.status_code for name, answer in answers.items()} == dict.fromkeys(links, 200)
     assert {name: answer.content_type for name, answer in answers.items()} == {
         "disc.dxf": "image/vnd.dxf",
@@ -49,6 +49,7 @@ def test_every_link_leads_to_its_file(client: Client) -> None:
         "disc.svg": "image/svg+xml",
         "hits.csv": "text/csv; charset=utf-8",
         "layout.json": "application/json",
+        "report.json": "application/json",
     }
     assert answers["record.dxf"].data == b"record.dxf of Harvest Dance"
 
@@ -134,7 +135,7 @@ def test_a_layout_made_by_one_worker_is_found_by_the_other(tmp_path: Path) -> No
 
     answers = [other.get(path).status_code for path in links.values()]
 
-    assert answers == [200] * 5
+    assert answers == [200] * 6
 
 
 def test_cutting_files_are_kept_back_where_an_error_stands(faulty_client: Client) -> None:
@@ -144,7 +145,7 @@ def test_cutting_files_are_kept_back_where_an_error_stands(faulty_client: Client
 
     assert made.status_code == 201
     assert made.json["good_to_cut"] is False
-    assert list(made.json["links"]) == ["record.dxf", "disc.svg", "layout.json"]
+    assert list(made.json["links"]) == ["record.dxf", "disc.svg", "layout.json", "report.json"]
     assert refused.status_code == 422
     assert refused.json["findings"] == made.json["layout"]["findings"]
 
@@ -155,7 +156,7 @@ def test_a_reason_gives_cutting_files_that_say_what_they_are(faulty_client: Clie
 
     given = faulty_client.get(made.json["links"][name])
 
-    assert list(made.json["links"]) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json"]
+    assert list(made.json["links"]) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json"]
     assert made.json["layout"]["despite_findings"] == "a trial cut"
     assert given.status_code == 200
     assert given.data == f"{name} of Harvest Dance NOT GOOD TO CUT: a trial cut".encode()

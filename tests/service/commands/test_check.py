@@ -1,13 +1,12 @@
 import json
-from dataclasses import replace
+from dataclasses import asdict, replace
 from pathlib import Path
 
 import numpy as np
 import pytest
 
-from layout.check.finding import Code, Place
-from layout.write import layout_json
-from service.commands.findings import finding_lines, finding_told
+from layout.check.finding import Code, Finding, Place, finding_told
+from service.commands.findings import finding_lines
 from service.commands.main import main
 from service.demo.compose import TUNE_PATH
 from tests.service.commands.conftest import Discwright
@@ -84,10 +83,20 @@ def test_json_is_all_that_stands_on_stdout(
 
 
 @pytest.mark.parametrize("finding", [THIN_WEB, NEAR_RIM])
-def test_findings_are_written_as_layout_json_writes_them(finding: object) -> None:
-    told = json.loads(json.dumps(finding_told(finding)))  # lists for tuples
+def test_a_finding_is_written_with_only_the_places_that_apply(
+    discwright: Discwright,
+    planner: FakePlanner,
+    drawing: Path,
+    capsys: pytest.CaptureFixture[str],
+    finding: Finding,
+) -> None:
+    planner.findings = (finding,)
 
-    assert told == layout_json.finding_record(finding)
+    discwright("check", drawing, "--movement", "fernhollow-31", "--json")
+
+    [told] = json.loads(capsys.readouterr().out)["findings"]
+    at = {name: value for name, value in asdict(finding.at).items() if value not in (None, ())}
+    assert told == json.loads(json.dumps(asdict(finding) | {"at": at}))  # lists for tuples
 
 
 def test_many_findings_of_one_kind_are_told_in_short() -> None:

@@ -9,8 +9,8 @@ from layout.documents import shipped_cutter, shipped_movement
 from tests.service.commands.conftest import Discwright
 from tests.service.fakes import BROKEN_TUNE, NEAR_RIM, THIN_WEB, FakePlanner
 
-FILES = ["disc.dxf", "hits.csv", "record.dxf", "disc.svg", "layout.json"]
-SHOWN = ["disc.svg", "layout.json", "record.dxf"]  # what an error does not keep back
+FILES = ["disc.dxf", "hits.csv", "record.dxf", "disc.svg", "layout.json", "report.json"]
+SHOWN = ["disc.svg", "layout.json", "record.dxf", "report.json"]  # what an error does not keep back
 MOVEMENT = ("--movement", "fernhollow-31")
 
 
@@ -28,7 +28,7 @@ def complaint(capsys: pytest.CaptureFixture[str]) -> str:
     return told.err
 
 
-def test_a_good_disc_gives_five_files_and_exit_0(discwright: Discwright, tune: Path, tmp_path: Path) -> None:
+def test_a_good_disc_gives_six_files_and_exit_0(discwright: Discwright, tune: Path, tmp_path: Path) -> None:
     code = discwright("plan", tune, *MOVEMENT, "--out", tmp_path / "a" / "b")
 
     assert code == 0
@@ -47,16 +47,26 @@ def test_the_summary_says_what_the_disc_keeps(
         "Harvest Dance",
         "  movement    fernhollow-31, revision 1: Fernhollow, 31 tracks, standing projections",
         "  cutter      turn-press: Turret press with a turning table, lanced projections; drawn from the star side",
-        "  kept        3 of 4 notes, as 2 projections",
+        "  kept        3 of 4 notes asked for, as 2 projections",
+        "  worth       3400 of at most 4000 (85.0 %)",
         "  left out    1: 1 no-such-pitch",
+        "  not asked   1: 1 outside-passage",
         "  transposed  +3 semitones",
         "  speed       1 times as written",
         "  starts at   0.50 s of the tune",
         "  odd in the tune: track 2 has no end",
+        "  voice     notes  kept  weight kept  octave  nudged  largest    mean  covered  left out",
+        "  top line      2     1       50.0 %       0       0        -       -        0         1",
+        "  bass          2     2      100.0 %       0       1   5.0 ms  5.0 ms        1         0",
+        "  inner         0     0            -       0       0        -       -        0         0",
+        "  total         4     3       77.3 %       0       1   5.0 ms  5.0 ms        1         1",
+        "  worst bar    from  notes  lost  weight lost",
+        "  2          1.50 s      3     1       33.3 %",
+        "  load        not known: nothing is lifted",
         "warning web-to-rim: the web to the rim is 0.52 mm, near 0.5 mm",
         "    what helps: cut a trial piece",
         "good to cut",
-        f"written to {tmp_path / 'out'}: disc.dxf, record.dxf, disc.svg, hits.csv, layout.json",
+        f"written to {tmp_path / 'out'}: disc.dxf, record.dxf, disc.svg, hits.csv, layout.json, report.json",
     ]
 
 
@@ -126,8 +136,9 @@ def test_json_is_all_that_stands_on_stdout(
     answer = json.loads(told.out)
     assert code == 3
     assert told.err == ""
-    assert set(answer) == {"good_to_cut", "files", "kept_back", "removed", "layout"}
+    assert set(answer) == {"good_to_cut", "files", "kept_back", "removed", "layout", "report"}
     assert answer["layout"] == json.loads((tmp_path / "out" / "layout.json").read_text())
+    assert answer["report"] == json.loads((tmp_path / "out" / "report.json").read_text())
     assert answer["kept_back"] == ["disc.dxf", "hits.csv"]
     assert {name: Path(path).read_bytes() for name, path in answer["files"].items()} == {
         name: (tmp_path / "out" / name).read_bytes() for name in SHOWN

@@ -1,0 +1,25 @@
+"""How JSON files are written: one field to a line, and one entry of a list to a line."""
+
+import json
+from typing import Any
+
+
+def json_lines(record: dict[str, Any]) -> bytes:
+    """The record as UTF-8 JSON, its fields in their order.
+
+    Raises:
+        ValueError: A number is not finite: a fault of the program, never of an input.
+    """
+    lines = ",\n".join(f"{_json(name)}: {_value(value)}" for name, value in record.items())
+    # JSON writes half a surrogate pair as \udXXX, which is also what this error handler writes.
+    return f"{{\n{lines}\n}}\n".encode("utf-8", errors="backslashreplace")
+
+
+def _value(value: Any) -> str:
+    if isinstance(value, list) and value:
+        return "[\n" + ",\n".join(_json(entry) for entry in value) + "\n]"
+    return _json(value)
+
+
+def _json(value: Any) -> str:
+    return json.dumps(value, ensure_ascii=False, allow_nan=False)

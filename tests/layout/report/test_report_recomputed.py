@@ -1,0 +1,244 @@
+"""The report's numbers counted again from layout.json and the documents, with no help from layout/report.
+
+Only the transpositions tried are not in layout.json; of them the first must be the layout's own.
+"""
+
+import bisect
+import json
+import math
+from collections import Counter
+from collections.abc import Callable
+from dataclasses import replace
+from itertools import chain
+from typing import Any
+
+import numpy as np
+import pytest
+
+from layout import walk
+from layout.arrange.arrangement import NO_NOTE
+from layout.documents import Cutter, Movement, read_settings
+from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.place import place
+from layout.play import play
+from layout.report import report_on
+from layout.write import layout_record, report_record
+from layout.write.laid_out import LaidOut
+from service.demo.compose import demo_tune
+from tests.layout.examples import LASER, PRESS, SHIPPED, movement_with
+from tests.outside.pieces import public_domain_piece
+
+Json = dict[str, Any]
+TUNES: dict[str, Callable[[], bytes]] = {
+    "demo": demo_tune,
+    "chorale": lambda: public_domain_piece("bach chorale 66.6"),
+    "reel": lambda: public_domain_piece("acacia reel"),
+    "rag": lambda: public_domain_piece("joplin rag"),
+}
+WANTED = {
+    "as written": {},
+    "part of it, fitted": {
+        "passage": {"from_s": 3.1, "to_s": 21.7},
+        "speed": {"mode": "fit"},
+        "rulings": [{"note": 30, "do": "leave-out"}],
+    },
+}
+MICROSECOND_MS = 1e-3
+LIFTED = {"stiffness_n_per_mm": 2.0, "lift_mm": 0.5}
+
+
+def laid_out_by(tune: str, wanted: str, movement: Movement) -> LaidOut:
+    """The tune on the movement, made by the cutter that can make its projections."""
+    cutter = PRESS if movement.id == "mossbrook-67" else LASER
+    return walk.lay_out(TUNES[tune](), movement, cutter, read_settings(json.dumps(WANTED[wanted])))
+
+
+def with_all_there_is_to_tell(laid_out: LaidOut) -> LaidOut:
+    """The layout with nudges, octave moves, extra plucks, a lead channel, a covered note and a load made up by hand."""
+    old = laid_out.arrangement
+    count, notes = len(old.track_index), list(old.notes)
+    # Every fifth pluck is nudged by up to 9 ms; every seventh an octave down; every eleventh is an extra
+    # one of the first note, and its own notes are covered by the pluck before it.
+    place_of = np.arange(count)
+    nudge_s = np.where(place_of % 5 == 0, ((place_of % 19) - 9) / 1000, 0.0)
+    again_of = np.where(place_of % 11 == 10, notes[0][0], NO_NOTE)
+    for extra in np.flatnonzero(again_of != NO_NOTE).tolist():
+        notes[extra - 1] = tuple(sorted(notes[extra - 1] + notes[extra]))
+        notes[extra] = ()
+    score_notes = np.arange(laid_out.score.note_count)
+    asked = old.note_weight > 0
+    arrangement = replace(
+        old,
+        planned_s=frozen_floats(old.asked_s + np.where(old.asked_s + nudge_s >= 0, nudge_s, 0.0)),
+        notes=tuple(notes),
+        again_of=frozen_ints(again_of),
+        octave_semitones=frozen_ints(np.where(place_of % 7 == 6, -12, 0)),
+        note_weight=frozen_ints(np.where(asked, 700 + 13 * (score_notes % 101), 0)),
+        highest=asked & (score_notes % 3 == 0),
+        lowest=asked & (score_notes % 4 == 0),
+        melody=asked & (score_notes % 6 == 0),
+    )
+    disc = place(arrangement, laid_out.disc.movement, laid_out.disc.cutter)
+    report = report_on(laid_out.score, arrangement, disc)
+    return replace(laid_out, arrangement=arrangement, disc=disc, plucks=play(disc), report=report)
+
+
+def tally_of(layout: Json, belongs: Callable[[Json], bool]) -> Json:
+    """The row of the report for the asked notes that belong to a voice."""
+    asked = {note["note"]: note["weight"] for note in layout["notes"] if note["weight"] > 0 and belongs(note)}
+    placed = [(note, place) for place in layout["projections"] for note in place["notes"] if note in asked]
+    covered = set(chain.from_iterable(place["notes"][1:] for place in layout["projections"]))
+    sizes_ms = [abs(place["sounds_s"] - place["asked_s"]) * 1000 for _, place in placed]
+    nudged_ms = [size_ms for size_ms in sizes_ms if size_ms > MICROSECOND_MS]
+    kept_weight = sum(asked[note] for note, _ in placed)
+    return {
+        "note_count": len(asked),
+        "kept_count": len(placed),
+        "asked_weight": sum(asked.values()),
+        "kept_weight": kept_weight,
+        "kept_share": kept_weight / sum(asked.values()) if asked else None,
+        "octave_count": sum(place["octave_semitones"] != 0 for _, place in placed),
+        "nudged_count": len(nudged_ms),
+        "largest_nudge_ms": pytest.approx(max(nudged_ms, default=0.0), abs=MICROSECOND_MS),
+        "mean_nudge_ms": pytest.approx(sum(nudged_ms) / max(len(nudged_ms), 1), abs=MICROSECOND_MS),
+        "covered_count": sum(note in covered for note, _ in placed),
+        "left_out": Counter(left["reason"] for left in layout["left_out"] if left["note"] in asked),
+    }
+
+
+def worst_bars_of(layout: Json) -> list[Json]:
+    starts_s = [bar["start_s"] for bar in layout["bars"]]
+    lost = {left["note"] for left in layout["left_out"]}
+    bars: dict[int, Json] = {}
+    for note in layout["notes"]:
+        if note["weight"] == 0:
+            continue
+        number = bisect.bisect_right(starts_s, note["onset_s"] + 1e-9)  # rounding puts no note before its bar line
+        empty = {"note_count": 0, "lost_count": 0, "asked_weight": 0, "lost_weight": 0}
+        bar = bars.setdefault(number, {"bar": number, "start_s": starts_s[number - 1]} | empty)
+        is_lost = note["note"] in lost
+        bar["note_count"] += 1
+        bar["asked_weight"] += note["weight"]
+        bar["lost_count"] += is_lost
+        bar["lost_weight"] += note["weight"] * is_lost
+    worst = sorted(bars.values(), key=lambda bar: (-bar["lost_weight"], bar["bar"]))[:5]
+    return [
+        bar | {"lost_share": pytest.approx(bar["lost_weight"] / bar["asked_weight"])}
+        for bar in worst
+        if bar["lost_weight"] > 0
+    ]
+
+
+def tracks_of(layout: Json, movement: Movement, cutter: Cutter) -> list[Json]:
+    """Timing: a point at radius r passes 2πr mm in a turn, and 360 degrees."""
+    rows = []
+    for track in movement.tracks:
+        placed = [place for place in layout["projections"] if place["track"] == track.track]
+        if not placed:
+            continue
+        mm_per_ms = 2 * math.pi * track.radius_mm / (1000 * movement.revolution_s)
+        deg_per_ms = 360 / (1000 * movement.revolution_s)
+        position_ms = cutter.position_tolerance_mm / mm_per_ms
+        angle_ms = cutter.angle_tolerance_deg / deg_per_ms
+        largest_ms = max(abs(place["sounds_s"] - place["asked_s"]) * 1000 for place in placed)
+        rows.append(
+            {
+                "track": track.track,
+                "radius_mm": track.radius_mm,
+                "pluck_count": len(placed),
+                "position_ms": pytest.approx(position_ms),
+                "angle_ms": pytest.approx(angle_ms),
+                "together_ms": pytest.approx(position_ms + angle_ms),
+                "largest_nudge_ms": pytest.approx(largest_ms, abs=MICROSECOND_MS),
+            }
+        )
+    return rows
+
+
+def load_at(at_s: float, layout: Json, movement: Movement) -> float:
+    """Torque at a moment, N mm: a tooth lifted by u loads the disc with k·u·r·cos δ; u is q at its release."""
+    torque_nmm = 0.0
+    for pluck in layout["projections"]:
+        arm_mm = math.sqrt(pluck["radius_mm"] ** 2 - movement.gantry_offset_mm**2)  # r·cos δ, as sin δ = d/r
+        travel_mm = (pluck["sounds_s"] - at_s) * 2 * math.pi * arm_mm / movement.revolution_s  # until the release
+        for tooth in movement.teeth:
+            if tooth.track == pluck["track"] and tooth.usable and -1e-6 < travel_mm < tooth.lift_mm:
+                torque_nmm += tooth.stiffness_n_per_mm * (tooth.lift_mm - travel_mm) * arm_mm
+    return torque_nmm
+
+
+def assert_load_right(load: Json, layout: Json, movement: Movement) -> None:
+    """No release loads the disc more than the peak, and the peak is what is there at its moment."""
+    assert load["peak_nmm"] == pytest.approx(load_at(load["at_s"], layout, movement), rel=1e-3)
+    releases_s = [place["sounds_s"] for place in layout["projections"]]
+    assert max(load_at(at_s, layout, movement) for at_s in releases_s) <= load["peak_nmm"] * 1.001
+
+
+def assert_counted_right(laid_out: LaidOut) -> None:
+    """Every number of the report against layout.json and the documents."""
+    layout = json.loads(json.dumps(layout_record(laid_out, despite_findings=None)))
+    report = json.loads(json.dumps(report_record(laid_out)))
+    movement, cutter = laid_out.disc.movement, laid_out.disc.cutter
+    for field in ("title", "fingerprint", "good_to_cut", "movement", "cutter", "transposed_semitones", "worth"):
+        assert report[field] == layout[field]
+    for voice in ("highest", "lowest", "inner"):
+        assert report[voice] == tally_of(layout, lambda note, voice=voice: note["voice"] == voice)
+    assert report["total"] == tally_of(layout, lambda note: True)
+    if any(note["melody"] != (note["voice"] == "highest") for note in layout["notes"]):
+        assert report["melody"] == tally_of(layout, lambda note: note["melody"])
+    else:
+        assert report["melody"] is None
+    not_asked = {note["note"] for note in layout["notes"] if note["weight"] == 0}
+    assert report["not_asked"] == Counter(left["reason"] for left in layout["left_out"] if left["note"] in not_asked)
+    assert report["worst_bars"] == worst_bars_of(layout)
+    assert report["projection_count"] == len(layout["projections"])
+    assert report["extra_pluck_count"] == sum("again_of" in place for place in layout["projections"])
+    assert report["tracks"] == tracks_of(layout, movement, cutter)
+    assert (report["load"] is None) == (report["no_load_because"] is not None)
+    if report["load"]:
+        assert_load_right(report["load"], layout, movement)
+    for best in report["tried"][:1]:
+        assert (best["semitones"], best["kept"]) == (layout["transposed_semitones"], layout["worth"]["kept"])
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+@pytest.mark.parametrize("tune", TUNES)
+def test_the_report_can_be_counted_again_from_the_layout(tune: str, movement: Movement) -> None:
+    laid_out = laid_out_by(tune, "as written", movement)
+
+    assert_counted_right(laid_out)
+    assert laid_out.report.total.kept_count > 20
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_report_on_part_of_a_tune_can_be_counted_again(movement: Movement) -> None:
+    laid_out = laid_out_by("demo", "part of it, fitted", movement)
+
+    assert_counted_right(laid_out)
+    assert {reason for reason, _ in laid_out.report.not_asked} >= {"outside-passage"}
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_report_on_a_layout_with_all_there_is_to_tell_can_be_counted_again(movement: Movement) -> None:
+    laid_out = with_all_there_is_to_tell(laid_out_by("demo", "as written", movement))
+
+    assert_counted_right(laid_out)
+    report = laid_out.report
+    assert min(report.total.octave_count, report.total.nudged_count, report.total.covered_count) > 3
+    assert report.melody is not None
+    assert report.extra_pluck_count > 3
+
+
+def test_a_load_counted_again_is_the_sum_over_the_teeth_in_touch() -> None:
+    teeth = {f"teeth/{index}/{name}": value for index in range(3) for name, value in LIFTED.items()}
+    movement = movement_with(teeth)
+    places = [
+        {"track": 1, "radius_mm": 50, "sounds_s": 2.0},
+        {"track": 2, "radius_mm": 60, "sounds_s": 2.0},
+        {"track": 3, "radius_mm": 100, "sounds_s": 2.03},
+        {"track": 3, "radius_mm": 100, "sounds_s": 9.0},
+    ]
+
+    # 2 N/mm · 0.5 mm is 1 N: 50 + 60 N mm; track 3 passes 2π · 100/60 = 10.472 mm/s, so 0.03 s before its
+    # release its tooth is lifted by 0.5 − 0.31416 mm: 2 · 0.18584 · 100 = 37.168 N mm
+    assert load_at(2.0, {"projections": places}, movement) == pytest.approx(147.168, abs=0.001)
