@@ -3,7 +3,7 @@ from typing import Any
 
 import pytest
 
-from layout.documents import Settings, read_settings, shipped_cutter, shipped_cutter_ids
+from layout.documents import shipped_cutter, shipped_cutter_ids
 from layout.documents.cutter import LAYER_COLOURS, read_cutter
 from layout.errors import DocumentError, NotShippedError
 from tests.layout.examples import LASER, PRESS, cutter_with, document_with
@@ -56,27 +56,3 @@ def test_a_fault_in_a_cutter_names_its_place(base: Any, changes: dict[str, Any],
 def test_an_unknown_cutter_names_the_ones_there_are() -> None:
     with pytest.raises(NotShippedError, match="no cutter has the id 'saw'; known: fibre-laser, turn-press"):
         shipped_cutter("saw")
-
-
-def test_empty_settings_are_the_defaults() -> None:
-    assert read_settings("{}") == Settings()
-
-
-@pytest.mark.parametrize(
-    ("settings", "message"),
-    [
-        ({"passage": {"from_s": 5, "to_s": 4}}, r"to_s \(4\) must be after from_s \(5\)"),
-        ({"speed": {"mode": "factor"}}, 'give factor with mode "factor", and only then'),
-        ({"speed": {"mode": "fit", "least": 2, "most": 1}}, r"least \(2\) must not be above most \(1\)"),
-        ({"transpose": {"mode": "fixed"}}, 'give semitones with mode "fixed", and only then'),
-        ({"transpose": {"semitones": 99, "mode": "fixed"}}, "/transpose/semitones: .*48, got 99"),
-        ({"channels": {"leave_out": [0]}}, "/channels/leave_out/0: .*got 0"),
-        ({"rulings": [{"note": 1, "do": "place"}]}, 'give track with do "place", and only then'),
-        ({"octave_moves": "all"}, "octave moves are not offered yet; leave it out or at 'none', got 'all'"),
-        ({"discs": 2}, "/discs: several discs are not offered yet; leave it out or at 1, got 2"),
-        ({"tempo": 90}, "/tempo: no such field"),
-    ],
-)
-def test_a_fault_in_settings_names_its_place(settings: dict[str, Any], message: str) -> None:
-    with pytest.raises(DocumentError, match=message):
-        read_settings(json.dumps(settings))
