@@ -137,15 +137,15 @@ def marks(changes: list[Change], last_tick: int, division: int) -> Iterator[tupl
             place, number, bar_at = Fraction(min(following)), 0, min(following)
 
 
-ANY_METRE = st.tuples(st.integers(0, 3000), st.integers(1, 13), st.sampled_from([1, 2, 4, 8, 16, 32, 64, 128]))
-ANY_TEMPO = st.tuples(st.integers(0, 3000), st.just(0), st.integers(1, 0xFFFFFF))
+ANY_METRE = st.tuples(st.integers(0, 200), st.integers(1, 13), st.sampled_from([1, 2, 4, 8, 16, 32, 64, 128]))
+ANY_TEMPO = st.tuples(st.integers(0, 200), st.just(0), st.integers(1, 0xFFFFFF))
 
 
 @given(
     st.lists(ANY_METRE, max_size=5, unique_by=lambda change: change[0]),
     st.lists(ANY_TEMPO, max_size=5, unique_by=lambda change: change[0]),
-    st.lists(st.integers(0, 300), min_size=1, max_size=3),
-    st.sampled_from([1, 7, 96, 480]),
+    st.lists(st.integers(0, 80), min_size=1, max_size=3),
+    st.sampled_from([4, 7, 96, 480]),
 )
 def test_every_bar_and_beat_is_the_double_nearest_to_the_exact_moment(
     metres: list[Change], tempi: list[Change], gaps: list[int], division: int
