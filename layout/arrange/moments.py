@@ -126,7 +126,8 @@ def _left_out(score: Score, settings: Settings, ruled_out: frozenset[int]) -> Bo
     channels = settings.channels
     left_out: BoolArray = np.isin(score.channel, channels.leave_out)
     if channels.keep_only:
-        left_out |= ~np.isin(score.channel, channels.keep_only)
+        # What is not kept holds what is left out: the two lists share no channel.
+        left_out = np.isin(score.channel, channels.keep_only, invert=True)
     left_out[list(ruled_out)] = True
     return left_out
 

@@ -53,7 +53,7 @@ class Passage(SettingsPart):
 
     @model_validator(mode="after")
     def _runs_forward(self) -> Self:
-        if self.to_s is not None and self.from_bar is None and self.to_s <= (self.from_s or 0.0):
+        if self.to_s is not None and self.to_s <= (self.from_s or 0.0):
             raise ValueError(f"to_s ({self.to_s:g}) must be after from_s ({self.from_s or 0.0:g})")
         begin, end = (self.from_bar or 1, self.from_beat), (self.to_bar, self.to_beat)
         if self.to_bar is not None and self.from_s is None and (self.to_bar, self.to_beat) <= begin:

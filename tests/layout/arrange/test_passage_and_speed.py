@@ -350,12 +350,14 @@ def test_best_between_equal_bounds_searches_one_speed() -> None:
 
 
 def test_the_fitting_speed_counts_only_what_is_asked_for() -> None:
-    score = score_of([(0.0, "C4"), (60.9, "D4", 64, 2), (70.0, "C4"), (80.0, "C4", 64, 3)])
+    score = score_of([(0.0, "C4"), (60.95, "D4", 64, 2), (70.0, "C4"), (80.0, "C4", 64, 3)])
     settings = asking(speed={"mode": "best"}, channels={"leave_out": [3]})
 
     found = speed_factors(score, settings, frozenset({2}), FREE_S)
 
-    assert 60.9 / FREE_S in found
+    # No hundredth: 1.05086. The others would fit at 70/58 = 1.20690.
+    assert 60.95 / FREE_S in found
+    assert 70.0 / FREE_S not in found
 
 
 def test_wide_bounds_are_searched_on_a_coarser_grid() -> None:

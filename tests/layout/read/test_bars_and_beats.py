@@ -107,15 +107,15 @@ def test_a_time_signature_after_the_bar_that_ends_the_tune_changes_nothing() -> 
 
 def test_time_signatures_of_all_tracks_are_merged_and_the_later_track_holds_at_one_tick() -> None:
     tune = midi_file(
-        f"00 {metre(3, 2)} 8120 {metre(2, 2)} {END}",  # 3/4 at tick 0, 2/4 at tick 160
-        f"00 {metre(2, 2)} 8330 {NOTE} {END}",  # 2/4 at tick 0; a note at tick 432
+        f"00 {metre(3, 2)} 8220 {metre(2, 2)} {END}",  # 3/4 at tick 0, 2/4 at tick 288
+        f"00 {metre(5, 3)} 8330 {NOTE} {END}",  # 5/8 at tick 0; a note at tick 432
         midi_format=1,
     )
 
     score = read_score(tune)
 
-    # 2/4 holds from 0: 1 s a bar, cut at 160 ticks, 0.8333 s; then on from there.
-    assert score.bar_s.tolist() == [0.0, *(float(Fraction(160, 192) + bar) for bar in range(3))]
+    # 5/8 holds from 0: 1.25 s a bar, the second cut at 288 ticks, 1.5 s; then 1 s a bar.
+    assert score.bar_s.tolist() == [0.0, 1.25, 1.5, 2.5]
 
 
 def test_bars_keep_to_every_tempo() -> None:
