@@ -161,19 +161,14 @@ class Columns:
     def _ringing(self) -> Iterator[tuple[int, list[int]]]:
         """Every spot that may ring into a cost, and the earlier spots of its track that would make it."""
         problem = self._problem
+        asked_ns = problem.unspread_ns
         for track, spots in self._by_track.items():
-            ringing_ns = int(problem.ringing_ns[track])
-            for place, spot in enumerate(spots):
+            ranked = sorted(spots, key=lambda spot: (int(asked_ns[spot]), int(problem.pluck[spot])))
+            for place, spot in enumerate(ranked):
                 if problem.ringing_cost[spot]:
-                    since_ns = int(problem.asked_ns[spot]) - ringing_ns
-                    yield (
-                        spot,
-                        [
-                            one
-                            for one in spots[:place]
-                            if problem.asked_ns[one] > since_ns and problem.pluck[one] != problem.pluck[spot]
-                        ],
-                    )
+                    since_ns = asked_ns[spot] - problem.ringing_ns[track]
+                    before = [one for one in ranked[:place] if problem.pluck[one] != problem.pluck[spot]]
+                    yield spot, [one for one in before if asked_ns[one] > since_ns]
 
     def _spread_chords(self) -> list[tuple[int, int]]:
         """Every (chord, spread) that a chord of the group may take, where it has a choice."""

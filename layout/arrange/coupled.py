@@ -78,9 +78,10 @@ def worth_of(problem: Problem, spots: Sequence[int]) -> int:
     on_track: dict[int, list[int]] = defaultdict(list)
     for spot in spots:
         on_track[int(problem.track[spot])].append(spot)
+    asked_ns = problem.unspread_ns
     for track, there in on_track.items():
-        there.sort(key=lambda spot: (int(problem.asked_ns[spot]), int(problem.pluck[spot])))
+        there.sort(key=lambda spot: (int(asked_ns[spot]), int(problem.pluck[spot])))
         for before, spot in pairwise(there):
-            if problem.asked_ns[spot] - problem.asked_ns[before] < problem.ringing_ns[track]:
+            if asked_ns[spot] - asked_ns[before] < problem.ringing_ns[track]:
                 worth -= int(problem.ringing_cost[spot])
     return worth

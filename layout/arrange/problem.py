@@ -14,11 +14,13 @@ every pluck, so that the worth is greatest and
 5. all spots of one `chord` have the same `spread`: it is played together, or spread by one step.
 
 A spot loses its `ringing_cost` where an earlier one on its track is asked less than the track's
-`ringing_ns` before. Times are nanoseconds, loads thousandths of a newton millimetre, worths those
+`ringing_ns` before, chords unspread. Times are nanoseconds, loads thousandths of a newton millimetre, worths those
 of layout.arrange.weights: sums of whole numbers are exact, so the answer is the same everywhere.
 """
 
 from dataclasses import dataclass
+
+import numpy as np
 
 from layout.mechanics.arrays import BoolArray, IntArray
 
@@ -72,7 +74,8 @@ class Problem:
     Attributes:
         must_sound: Shape (n,). Whether a ruling forbids to leave the pluck out.
         parent: Shape (n,). The pluck an extra one belongs to, before it in order; NO_PLUCK for the others.
-        first_spot: Shape (n + 1,). Spots of pluck p are first_spot[p] to first_spot[p + 1] − 1.
+        first_spot: Shape (n + 1,). Spots of pluck p are first_spot[p] to first_spot[p + 1] − 1,
+            an unspread one first.
         pluck: Shape (m,). The pluck of each spot, rising.
         track: Shape (m,). Its track, from 0.
         worth: Shape (m,). Its weight times its fit, above 0.
@@ -107,6 +110,11 @@ class Problem:
     turn_ns: int
     besides: tuple[Beside, ...]
     drive: Drive | None
+
+    @property
+    def unspread_ns(self) -> IntArray:
+        """Shape (m,). The moment each spot's pluck is asked for while its chord is not spread."""
+        return np.asarray(self.asked_ns[self.first_spot[self.pluck]])
 
     @property
     def pluck_count(self) -> int:
