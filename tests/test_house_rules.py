@@ -44,6 +44,9 @@ UNIT_SUFFIXES = (
 FIELDS_WITHOUT_UNIT = {
     "Shape.bulges": "a DXF bulge is a plain number, tan of a quarter of the arc's angle",
     "Outlines.bulges": "as in Shape",
+    "Row.coefficients": "a row of a program joins columns of any unit",
+    "Row.least": "as coefficients",
+    "Row.most": "as coefficients",
 }
 
 MACHINE_PATH = re.compile(r"(?<![\w.])/(?:home|Users|root|work|tmp)/\w|[A-Z]:\\Users|\.\./" + "shared")

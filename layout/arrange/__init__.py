@@ -1,6 +1,6 @@
 """The arrange stage: which notes are plucked on which tracks, and why the others are not."""
 
 from layout.arrange.arrangement import Arrangement
-from layout.arrange.arranging import arrange
+from layout.arrange.arranging import Clock, arrange, arrange_discs
 
-__all__ = ["Arrangement", "arrange"]
+__all__ = ["Arrangement", "Clock", "arrange", "arrange_discs"]

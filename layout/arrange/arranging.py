@@ -1,84 +1,162 @@
-"""The arrange stage: Score to Arrangement."""
+"""The arrange stage: Score to Arrangement, of one disc or of several."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass
 
-import numpy as np
-
-from layout.arrange.arrangement import NO_NOTE, Arrangement, LeftOut, LeftOutReason, Worth
-from layout.arrange.asked import NO_TRACK
-from layout.arrange.choose import choose
-from layout.arrange.comb import comb_of
-from layout.arrange.moments import Moments, moments_of
-from layout.arrange.plucks import Wanted, wanted_plucks
-from layout.arrange.reasons import reasons_of
-from layout.arrange.rulings import check_in_time, read_rulings
-from layout.arrange.transposing import Rules, Transposed, best_transposed
-from layout.arrange.weights import weigh
+from layout.arrange.arrangement import Arrangement, LeftOutReason
+from layout.arrange.asking import Asked, asked_of_discs
+from layout.arrange.budget import Budget
+from layout.arrange.comb import Comb, comb_of
+from layout.arrange.finishing import Finishing
+from layout.arrange.moments import speed_factors
+from layout.arrange.posing import Rules, pose, rules_of
+from layout.arrange.problem import Problem
+from layout.arrange.refusals import Refused, refusal
+from layout.arrange.rulings import Rulings, check_in_time, read_rulings
+from layout.arrange.searching import NoWay, Way, search
+from layout.arrange.splitting import fitting_factor
+from layout.arrange.spreading import with_spread_chords
 from layout.documents.movement import Movement
 from layout.documents.settings import Settings
-from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.errors import RulingError
 from layout.mechanics.spacing import Spacing
-from layout.mechanics.turning import turning_of
+from layout.mechanics.turning import Turning, turning_of
 from layout.read.score import Score
 
+Clock = Callable[[], float]
 
-def arrange(score: Score, movement: Movement, settings: Settings, spacing: Spacing) -> Arrangement:
-    """Which notes are plucked on which tracks, when, and why the others are not.
 
-    Every pluck of the result keeps `spacing`, the end of the turn and its start included. No
-    onset is nudged yet: planned_s is asked_s. A tune with no notes, or none the comb can play, gives an
-    arrangement without plucks and every note in `left_out`.
+def arrange(
+    score: Score, movement: Movement, settings: Settings, spacing: Spacing, clock: Clock | None = None
+) -> Arrangement:
+    """Which notes one disc plucks on which tracks, when, and why the others are not.
+
+    It is the best arrangement there is, by `Worth`, over the transpositions and speeds the settings
+    let it search, with its proof; or the best found, where the search was stopped. Every pluck keeps
+    `spacing`, the end of the turn and its start included. A tune with no notes, or none the comb can
+    play, gives an arrangement without plucks and every note in `left_out`.
 
     Args:
         score: The tune.
         movement: What the disc is for.
-        settings: What the maker asks for.
+        settings: What the maker asks for; `discs` is taken for one.
         spacing: The rules of nearness, from layout.mechanics.spacing for this movement and a cutter.
+        clock: Seconds of a clock that only goes forward, for `time_limit_s`; without it there is no such limit.
 
     Raises:
+        DocumentError: The passage of the settings cannot be.
+        RulingError: The settings' rulings contradict each other, the tune, the passage or the comb.
+    """
+    [arrangement] = arrange_discs(score, movement, settings.model_copy(update={"discs": 1}), spacing, clock)
+    return arrangement
+
+
+def arrange_discs(
+    score: Score, movement: Movement, settings: Settings, spacing: Spacing, clock: Clock | None = None
+) -> tuple[Arrangement, ...]:
+    """The same for as many discs as the settings say, in the tune's order, at one transposition and speed.
+
+    The notes of the other discs are outside a disc's passage. Each disc's bound is what it keeps and
+    all that could be won on all discs together.
+
+    Args:
+        score: As for `arrange`.
+        movement: As for `arrange`.
+        settings: What the maker asks for.
+        spacing: As for `arrange`.
+        clock: As for `arrange`.
+
+    Raises:
+        DocumentError: The passage of the settings cannot be.
         RulingError: The settings' rulings contradict each other, the tune, the passage or the comb.
     """
     comb, turning = comb_of(movement), turning_of(movement)
-    rulings = read_rulings(settings.rulings, score, comb)
-    moments = moments_of(score, settings, rulings.left_out, turning.free_turn_s)
-    check_in_time(rulings, moments.out)
-    notes = np.setdiff1d(np.arange(score.note_count), np.fromiter(moments.out, dtype=np.int64), assume_unique=True)
-    weight = weigh(score, notes, settings.channels.lead).weight
-    wanted = wanted_plucks(score, notes, moments.asked_s, weight, rulings)
-    rules = Rules(comb=comb, turning=turning, spacing=spacing, rulings=rulings)
-    transposed = best_transposed(wanted, rules, settings.transpose, choose)
-    reasons = reasons_of(transposed.asked, transposed.chosen, comb, turning, spacing)
-    return _arrangement(wanted, moments, transposed, reasons)
+    tune = _Tune(score=score, settings=settings, turning=turning, rulings=read_rulings(settings.rulings, score, comb))
+    rules = rules_of(movement, comb, turning, spacing, settings)
+    asked = _asked_by_speed(tune)
+    budget = Budget(time_limit_s=settings.time_limit_s, clock=clock)
+    found = search(_ways(settings, asked), lambda way: _posed(asked[way.speed_factor], way, rules), budget)
+    if isinstance(found, NoWay):
+        raise _refusal(found, asked, tune, comb, spacing)
+    finishing = Finishing(score=score, movement=movement, turning=turning, spacing=spacing, comb=comb, found=found)
+    discs = zip(asked[found.way.speed_factor], found.problems, found.solved, strict=True)
+    return tuple(finishing.arrangement(one, problem, solved) for one, problem, solved in discs)
 
 
-def _arrangement(
-    wanted: Wanted, moments: Moments, transposed: Transposed, reasons: Mapping[int, LeftOutReason]
-) -> Arrangement:
-    track_index = transposed.chosen.track_index
-    played = np.flatnonzero(track_index != NO_TRACK)
-    order = played[np.lexsort((track_index[played], wanted.asked_s[played]))]
-    out = dict(moments.out)
-    out.update((note, reason) for pluck, reason in reasons.items() for note in wanted.notes[pluck])
-    kept, bound = transposed.kept, transposed.bound
-    asked_s = frozen_floats(wanted.asked_s[order])
-    return Arrangement(
-        track_index=frozen_ints(track_index[order]),
-        key=frozen_ints(transposed.asked.key[order]),
-        asked_s=asked_s,
-        planned_s=asked_s,
-        notes=tuple(wanted.notes[pluck] for pluck in order.tolist()),
-        again_of=frozen_ints(NO_NOTE for _ in order),
-        octave_semitones=frozen_ints(0 for _ in order),
-        left_out=tuple(LeftOut(note=note, reason=out[note]) for note in sorted(out)),
-        transposed_semitones=transposed.semitones,
-        speed_factor=moments.speed_factor,
-        from_s=moments.from_s,
-        length_s=moments.length_s,
-        worth=Worth(kept=kept, bound=bound, proved=kept == bound),
-        note_weight=frozen_ints([]),
-        highest=np.zeros(0, dtype=np.bool_),
-        lowest=np.zeros(0, dtype=np.bool_),
-        melody=np.zeros(0, dtype=np.bool_),
-        tried=(),
-        load=None,
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Tune:
+    score: Score
+    settings: Settings
+    turning: Turning
+    rulings: Rulings
+
+
+def _asked_by_speed(tune: _Tune) -> dict[float, tuple[Asked, ...]]:
+    """What is asked for at every speed searched at which the rulings can be followed in time.
+
+    Raises:
+        RulingError: At no speed they can; told of the speed nearest to as written.
+    """
+    found: dict[float, tuple[Asked, ...]] = {}
+    errors: list[RulingError] = []
+    for factor in sorted(_factors(tune), key=lambda factor: abs(factor - 1)):
+        asked = asked_of_discs(tune.score, tune.settings, tune.rulings, tune.turning.free_turn_s, factor)
+        try:
+            check_in_time(tune.rulings, _out_of_all(asked))
+        except RulingError as error:
+            errors.append(error)
+        else:
+            found[factor] = asked
+    if not found:
+        raise errors[0]
+    return found
+
+
+def _factors(tune: _Tune) -> tuple[float, ...]:
+    free_turn_s, ruled_out = tune.turning.free_turn_s, tune.rulings.left_out
+    if tune.settings.discs > 1 and tune.settings.speed.mode == "fit":
+        return (fitting_factor(tune.score, tune.settings, ruled_out, free_turn_s),)
+    return speed_factors(tune.score, tune.settings, ruled_out, free_turn_s)
+
+
+def _out_of_all(asked: Sequence[Asked]) -> dict[int, LeftOutReason]:
+    """The notes that no disc is asked for, and why: the reason of the disc that comes nearest to it."""
+    out: dict[int, LeftOutReason] = dict(asked[0].moments.out)
+    for one in asked[1:]:
+        there = one.moments.out
+        out = {
+            note: reason if there[note] == "outside-passage" else there[note]
+            for note, reason in out.items()
+            if note in there
+        }
+    return out
+
+
+def _ways(settings: Settings, factors: Iterable[float]) -> list[Way]:
+    transpose = settings.transpose
+    if transpose.semitones is not None:
+        searched = [transpose.semitones]
+    else:
+        searched = list(range(-transpose.range, transpose.range + 1))
+    return [Way(semitones=semitones, speed_factor=factor) for factor in factors for semitones in searched]
+
+
+def _posed(asked: Sequence[Asked], way: Way, rules: Rules) -> list[Problem]:
+    return [
+        with_spread_chords(pose(one.wanted, way.semitones, rules), int(one.wanted.nudge_ns.max(initial=0)))
+        for one in asked
+    ]
+
+
+def _refusal(
+    found: NoWay, asked: Mapping[float, tuple[Asked, ...]], tune: _Tune, comb: Comb, spacing: Spacing
+) -> RulingError:
+    way = min(found.shown_by, key=lambda way: (abs(way.speed_factor - 1), abs(way.semitones), way.semitones))
+    disc, problem, impossible = found.shown_by[way]
+    refused = Refused(
+        semitones=way.semitones,
+        wanted=asked[way.speed_factor][disc].wanted,
+        problem=problem,
+        impossible=impossible,
     )
+    return refusal(refused, tune.rulings, comb, spacing, tune.settings.transpose)

@@ -4,11 +4,10 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from layout.arrange.loads import loads_at
+from layout.arrange.loads import overloads
 from layout.arrange.moments_kept import Overrun, moments_kept
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import Problem
-from layout.mechanics.arrays import IntArray
 
 
 def broken_by(problem: Problem, spots: Sequence[int]) -> list[tuple[int, ...]]:
@@ -29,15 +28,3 @@ def broken_by(problem: Problem, spots: Sequence[int]) -> list[tuple[int, ...]]:
 def breaches(problem: Problem, spots: Sequence[int]) -> list[tuple[int, ...]]:
     """Pairs of spots whose openings would leave too little web."""
     return list(near_pairs(problem, np.array(spots, dtype=np.int64)))
-
-
-def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
-    """The spots that together load the disc beyond the limit, for every asked moment at which they do."""
-    if problem.drive is None:
-        return []
-    found = []
-    for at_ns in np.unique(problem.asked_ns[chosen]).tolist():
-        spots, loads = loads_at(problem, problem.drive, chosen, at_ns)
-        if sum(loads) > problem.drive.limit:
-            found.append(tuple(spots))
-    return found

@@ -10,6 +10,7 @@ Exact where `MOST_STATES` suffice. How many states there are is what the part's 
 one where nothing is in the way, tens on doubled teeth in a run.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -76,6 +77,11 @@ class Step(NamedTuple):
     quiet_ns: tuple[int, ...]  # by track: what was asked before this rings into nothing later
     rest: int  # the most that all later plucks could be worth
 
+    def as_asked(self) -> "Step":
+        """The same pluck without a nudge. Floors hold as they are: they are only a little early then."""
+        ways = tuple(way._replace(earliest_ns=way.asked_ns, latest_ns=way.asked_ns) for way in self.ways)
+        return self._replace(ways=ways)
+
 
 _Key = tuple[tuple[int, ...], int, tuple[int, ...]]  # free from, which plucks sound, last sounded
 _Chain = tuple["_Chain", int] | None  # the spots chosen, last first
@@ -90,6 +96,26 @@ def best_by_time(problem: Problem, plucks: IntArray) -> Best | Stuck | TooCrowde
         plucks: One part, rising; none give a choice of none.
     """
     steps = steps_of(problem, plucks)
+    best = _best(steps)
+    if isinstance(best, Best) and _nudges(problem, best.spots):
+        asked = _best([step.as_asked() for step in steps])
+        # As good without a nudge is better.
+        return asked if isinstance(asked, Best) and asked.worth == best.worth else best
+    return best
+
+
+def _nudges(problem: Problem, spots: Sequence[int]) -> bool:
+    """Whether some of the spots cannot sound at the moments they are asked for, on their own track alone."""
+    ended_ns: dict[int, int] = {}
+    for spot in spots:
+        track, asked_ns = int(problem.track[spot]), int(problem.asked_ns[spot])
+        if asked_ns < ended_ns.get(track, LONG_AGO):
+            return True
+        ended_ns[track] = asked_ns + int(problem.least_ns[spot])
+    return False
+
+
+def _best(steps: list[Step]) -> Best | Stuck | TooCrowded:
     in_turn = _in_turn(steps)
     if in_turn is not None and in_turn.worth == sum(_most(step) for step in steps):
         return in_turn

@@ -8,7 +8,8 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from layout.arrange.broken import breaches, overloads
+from layout.arrange.broken import breaches
+from layout.arrange.loads import overloads
 from layout.arrange.moments_kept import Overrun, moments_kept
 from layout.arrange.problem import NO_PLUCK, Problem
 from layout.mechanics.arrays import IntArray

@@ -10,12 +10,21 @@ from dataclasses import dataclass
 import highspy
 import numpy as np
 
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import FloatArray, IntArray
 
 # Worths are whole numbers: a bound less than one above a solution proves it. Half leaves room for rounding.
 _LEAST_GAP = 0.5
 _WHOLE = 0.5  # a column's value above this is a one
 _GRAIN = 1e-3  # what a bound may be off by rounding, in thousandths of a note; worths are whole
+
+# The same answer every time, and not a word on standard output.
+QUIET: dict[str, bool | int | float | str] = {
+    "output_flag": False,
+    "log_to_console": False,
+    "threads": 1,
+    "parallel": "off",
+    "random_seed": 0,
+}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -23,7 +32,7 @@ class Row:
     """least ≤ Σ coefficient · column ≤ most; coefficients of one where none are given."""
 
     columns: Sequence[int]
-    coefficients: Sequence[int] | None = None
+    coefficients: Sequence[float] | None = None
     least: float = -highspy.kHighsInf
     most: float = highspy.kHighsInf
 
@@ -51,18 +60,13 @@ class IntegerProgram:
     def __init__(self, worth: IntArray, rows: Sequence[Row]) -> None:
         self._columns = len(worth)
         self._highs = highspy.Highs()  # type: ignore[no-untyped-call]  # the library's own gap
-        options: dict[str, bool | int | float | str] = {
-            "output_flag": False,
-            "log_to_console": False,
-            "threads": 1,
-            "parallel": "off",
-            "random_seed": 0,
-            "mip_rel_gap": 0.0,
-            "mip_abs_gap": _LEAST_GAP,
-        }
-        for name, value in options.items():
+        for name, value in {**QUIET, "mip_rel_gap": 0.0, "mip_abs_gap": _LEAST_GAP}.items():
             self._highs.setOptionValue(name, value)
-        self._highs.passModel(_model(worth, rows))
+        model = filled_model(worth.astype(np.float64), rows)
+        model.col_lower_, model.col_upper_ = np.zeros(len(worth)), np.ones(len(worth))
+        model.integrality_ = [highspy.HighsVarType.kInteger] * len(worth)
+        model.sense_ = highspy.ObjSense.kMaximize
+        self._highs.passModel(model)
 
     def add(self, rows: Sequence[Row]) -> None:
         """Add rows."""
@@ -100,11 +104,11 @@ class IntegerProgram:
         return Answer(ones=ones, bound=bound, nodes=nodes, finished=finished)
 
 
-def _model(worth: IntArray, rows: Sequence[Row]) -> highspy.HighsLp:
+def filled_model(worth: FloatArray, rows: Sequence[Row]) -> highspy.HighsLp:
+    """A model with these costs and rows; bounds and kinds of its columns are still to be said."""
     model = highspy.HighsLp()
     model.num_col_, model.num_row_ = len(worth), len(rows)
-    model.col_cost_ = worth.astype(np.float64)
-    model.col_lower_, model.col_upper_ = np.zeros(len(worth)), np.ones(len(worth))
+    model.col_cost_ = worth
     model.row_lower_ = np.array([row.least for row in rows], dtype=np.float64)
     model.row_upper_ = np.array([row.most for row in rows], dtype=np.float64)
     model.a_matrix_.format_ = highspy.MatrixFormat.kRowwise
@@ -113,6 +117,4 @@ def _model(worth: IntArray, rows: Sequence[Row]) -> highspy.HighsLp:
     model.a_matrix_.value_ = np.array(
         [one for row in rows for one in (row.coefficients or (1,) * len(row.columns))], dtype=np.float64
     )
-    model.integrality_ = [highspy.HighsVarType.kInteger] * len(worth)
-    model.sense_ = highspy.ObjSense.kMaximize
     return model

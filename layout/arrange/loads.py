@@ -1,4 +1,7 @@
-"""What spots load the disc with, moment by moment."""
+"""What spots load the disc with, moment by moment.
+
+Between asked moments the load only grows towards the next release, so no other moment can be worse.
+"""
 
 from collections.abc import Iterator
 
@@ -11,8 +14,7 @@ from layout.mechanics.arrays import IntArray
 def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int], list[int]]]:
     """The spots that load the disc at an asked moment, and their loads, where all of them could be too much.
 
-    Between asked moments the load only grows towards the next release, so no other moment can be
-    worse. Of each pluck only the heaviest spot counts for "could".
+    Of each pluck only the heaviest spot counts for "could".
 
     Args:
         problem: With a drive.
@@ -23,7 +25,7 @@ def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int]
     """
     if problem.drive is None:
         raise ValueError("no load limit is kept")
-    for at_ns in np.unique(problem.asked_ns[spots]).tolist():
+    for at_ns in _crowded_ns(problem, problem.drive, spots):
         there, loads = loads_at(problem, problem.drive, spots, at_ns)
         heaviest: dict[int, int] = {}
         for spot, load in zip(there, loads, strict=True):
@@ -31,6 +33,18 @@ def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int]
             heaviest[pluck] = max(heaviest.get(pluck, 0), load)
         if sum(heaviest.values()) > problem.drive.limit:
             yield there, loads
+
+
+def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
+    """The spots that together load the disc beyond the limit, for every asked moment at which they do."""
+    if problem.drive is None:
+        return []
+    found = []
+    for at_ns in _crowded_ns(problem, problem.drive, chosen):
+        spots, loads = loads_at(problem, problem.drive, chosen, at_ns)
+        if sum(loads) > problem.drive.limit:
+            found.append(tuple(spots))
+    return found
 
 
 def loads_at(problem: Problem, drive: Drive, spots: IntArray, at_ns: int) -> tuple[list[int], list[int]]:
@@ -43,3 +57,19 @@ def loads_at(problem: Problem, drive: Drive, spots: IntArray, at_ns: int) -> tup
         if (load := drive.load(int(problem.track[spots[place]]), int(before_ns[place])))
     ]
     return [spot for spot, _ in found], [load for _, load in found]
+
+
+def _crowded_ns(problem: Problem, drive: Drive, spots: IntArray) -> list[int]:
+    """The asked moments at which the full loads of all spots asked within a window after would be too much."""
+    if not len(spots):
+        return []
+    full = np.array([sum(lift.load for lift in lifts) for lifts in drive.lifts], dtype=np.int64)
+    order = spots[np.argsort(problem.asked_ns[spots], kind="stable")]
+    asked_ns, loads = problem.asked_ns[order], full[problem.track[order]]
+    # Once more for the turn after: its first plucks may be lifted while the last of this one are.
+    asked_ns, loads = np.concatenate([asked_ns, asked_ns + problem.turn_ns]), np.concatenate([loads, loads])
+    moments_ns = np.unique(asked_ns[: len(order)])
+    summed = np.concatenate([[0], np.cumsum(loads)])
+    first, last = np.searchsorted(asked_ns, moments_ns), np.searchsorted(asked_ns, moments_ns + drive.widest_ns)
+    crowded: list[int] = moments_ns[summed[last] - summed[first] > drive.limit].tolist()
+    return crowded

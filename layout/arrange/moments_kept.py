@@ -6,7 +6,7 @@ longest paths from the windows' beginnings; a path that ends past a window's end
 """
 
 from collections import defaultdict, deque
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -62,17 +62,22 @@ def pushes_of(problem: Problem, spots: Sequence[int]) -> list[Push]:
     return pushes
 
 
-def moments_kept(problem: Problem, spots: Sequence[int]) -> Moments | Overrun:
+def moments_kept(
+    problem: Problem, spots: Sequence[int], not_before_ns: Mapping[int, int] | None = None
+) -> Moments | Overrun:
     """The earliest moments of chosen spots, or what forbids them together.
 
     Args:
         problem: The rules.
         spots: No two of one pluck, no two asked within a forbidden stretch.
+        not_before_ns: Before this a spot is not to sound, whatever its window; none where not given.
     """
     after: dict[int, list[Push]] = defaultdict(list)
     for push in pushes_of(problem, spots):
         after[push.earlier].append(push)
     at_ns = {spot: int(problem.earliest_ns[spot]) for spot in spots}
+    if not_before_ns is not None:
+        at_ns = {spot: max(earliest_ns, not_before_ns[spot]) for spot, earliest_ns in at_ns.items()}
     pushed_by: dict[int, Push] = {}
     waiting = deque(spots)
     queued = set(spots)

@@ -6,7 +6,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.arrangement import NO_NOTE
-from layout.arrange.asked import NO_TRACK
 from layout.arrange.problem import NO_PLUCK
 from layout.arrange.rulings import Rulings
 from layout.arrange.weights import Weighed
@@ -14,6 +13,7 @@ from layout.documents.settings import Settings
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats, frozen_ints
 from layout.read.score import Score
 
+NO_TRACK = -1  # stands in an array of tracks where there is none
 NS_PER_MS = 1_000_000
 
 

@@ -4,10 +4,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from layout.arrange.asked import NO_TRACK
-from layout.arrange.board import ROUNDING_RAD
 from layout.arrange.comb import Comb
-from layout.arrange.plucks import Wanted
+from layout.arrange.plucks import NO_TRACK, Wanted
 from layout.arrange.problem import Beside, Drive, Lift, Problem
 from layout.arrange.weights import FADED_S
 from layout.documents.movement import Movement
@@ -20,6 +18,11 @@ from layout.mechanics.turning import FULL_TURN_RAD, Turning
 OCTAVE = 12  # semitones
 NS_PER_S = 1_000_000_000
 LOAD_GRAINS = 1000  # a newton millimetre; loads are whole thousandths, rounded up
+
+# Edges may be this much nearer than their least angle: a repeat asked exactly at its least time is
+# in order, whatever rounding makes of it. At 210 mm it is 0.2 nm; far below any cutter.
+ROUNDING_RAD = 1e-9
+
 FIT_GRAINS = 1000  # fits are thousandths, as the factors of a weight are
 
 # How far apart the first and the last note of a chord too heavy for the drive may be put: up to each
@@ -130,8 +133,11 @@ def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntA
         found.append((of, tracks, np.full(len(of), FIT_GRAINS if shift == 0 else rules.octave_fit)))
     ruled = np.flatnonzero(~free)
     ruled_keys = np.array([rules.comb.key_of_track[int(one)] for one in wanted.on_track[ruled]], dtype=np.int64)
-    same = ruled_keys == wanted.pitch[ruled] + semitones
-    found.append((ruled, wanted.on_track[ruled], np.where(same, FIT_GRAINS, rules.octave_fit)))
+    moved = ruled_keys - (wanted.pitch[ruled] + semitones)
+    # By hand a note may go to any octave of its pitch, once octave moves are allowed at all.
+    sounds = (moved == 0) | ((rules.octaves != "none") & (moved % OCTAVE == 0))
+    fits = np.where(moved == 0, FIT_GRAINS, rules.octave_fit)
+    found.append((ruled[sounds], wanted.on_track[ruled][sounds], fits[sounds]))
     pluck, track, fit = (np.concatenate(part) for part in zip(*found, strict=True))
     order = np.lexsort((track, -fit, pluck))
     return pluck[order], track[order], fit[order], np.zeros(len(order), dtype=np.int64)

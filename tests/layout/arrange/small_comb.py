@@ -98,8 +98,9 @@ def score_of(notes: Sequence[Note], *, duration_s: float = 0.25) -> Score:
 
 
 def asking(**fields: Any) -> Settings:
-    """Settings with these fields; as written in pitch unless they say otherwise."""
-    return read_settings(json.dumps({"transpose": {"mode": "fixed", "semitones": 0}, **fields}))
+    """Settings with these fields; as written in pitch and without nudges unless they say otherwise."""
+    as_written = {"transpose": {"mode": "fixed", "semitones": 0}, "largest_nudge_ms": 0}
+    return read_settings(json.dumps({**as_written, **fields}))
 
 
 def arranged(notes: Sequence[Note], *, movement: Movement | None = None, **fields: Any) -> Arrangement:

@@ -68,7 +68,9 @@ def asked_settings(draw: st.DrawFn) -> Settings:
     return asking(**fields)
 
 
-def assert_sound(arrangement: Arrangement, score: Score, movement: Movement, spacing: Spacing) -> None:
+def assert_sound(
+    arrangement: Arrangement, score: Score, movement: Movement, spacing: Spacing, nudge_s: float = 0.0
+) -> None:
     """Everything that can be told from the arrangement without knowing how it was found."""
     notes = [note for pluck in arrangement.notes for note in pluck] + [one.note for one in arrangement.left_out]
     assert sorted(notes) == list(range(score.note_count))
@@ -82,7 +84,7 @@ def assert_sound(arrangement: Arrangement, score: Score, movement: Movement, spa
             assert score.pitch[note] + arrangement.transposed_semitones == key
             assert (score.onset_s[note] - arrangement.from_s) / arrangement.speed_factor == asked_s
         assert 0 <= asked_s <= free_s + ROUNDING
-    assert arrangement.planned_s.tolist() == arrangement.asked_s.tolist()
+    assert np.abs(arrangement.planned_s - arrangement.asked_s).max(initial=0.0) <= nudge_s + ROUNDING
     assert plucks_of(arrangement) == sorted(plucks_of(arrangement))
     assert broken_rules(plucks_of(arrangement), movement, loosened(spacing)) == []
 
@@ -254,7 +256,7 @@ def test_the_demo_tune_on_a_shipped_movement_breaks_no_rule(movement_id: str, cu
 
     arrangement = arrange(score, movement, Settings(), spacing)
 
-    assert_sound(arrangement, score, movement, spacing)
+    assert_sound(arrangement, score, movement, spacing, nudge_s=0.020)
     # What its makers composed it for: most of the tune is on the comb, and some repeats are too fast.
     in_time = [one for one in arrangement.left_out if one.reason != "past-the-turn"]
     assert 0 < len(in_time) < score.note_count / 5

@@ -337,8 +337,8 @@ def test_forced_notes_too_near_over_the_end_of_the_turn_are_refused() -> None:
 def test_three_notes_that_must_sound_on_two_tracks_are_refused() -> None:
     error = refusal([(0.0, "E4"), (0.2, "E4"), (0.4, "E4")], must(0), must(1), must(2))
 
-    # The third is 0.2 s from the second and 0.4 s from the first; the nearer is named.
-    assert "note 2 (/rulings/2) and note 1 (/rulings/1) cannot both sound" in str(error)
+    # No two of them clash: there are two tracks. All three are named.
+    assert "note 2 (/rulings/2), note 1 (/rulings/1) and note 0 (/rulings/0) cannot all sound" in str(error)
 
 
 def test_forced_notes_too_near_on_two_tracks_are_refused() -> None:

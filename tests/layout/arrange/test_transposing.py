@@ -6,20 +6,18 @@ import numpy as np
 import pytest
 
 from layout.arrange import arrange
-from layout.arrange.asked import Asked, Chosen, Clash
-from layout.arrange.choose import choose
+from layout.arrange.budget import Budget
 from layout.arrange.comb import comb_of
 from layout.arrange.plucks import Wanted
-from layout.arrange.rulings import Rulings
-from layout.arrange.transposing import Rules, best_transposed
+from layout.arrange.posing import Rules, pose, rules_of
+from layout.arrange.problem import Beside, Problem
+from layout.arrange.searching import Found, Way, search
 from layout.documents import read_settings, shipped_movement
 from layout.documents.pitch import key_of
-from layout.documents.settings import Transpose
 from layout.mechanics.arrays import frozen_floats, frozen_ints
-from layout.mechanics.spacing import Spacing
-from layout.mechanics.turning import Turning, turning_of
+from layout.mechanics.turning import turning_of
 from layout.read import Score
-from tests.layout.arrange.small_comb import arranged, comb_with, left_out, played, spacing_for
+from tests.layout.arrange.small_comb import arranged, asking, comb_with, left_out, played, spacing_for
 
 BEST = {"mode": "best"}
 
@@ -27,6 +25,7 @@ BEST = {"mode": "best"}
 def plucks(pitches: Sequence[str]) -> Wanted:
     """One pluck of weight 1000 every 2 s."""
     count = len(pitches)
+    nothing = frozen_ints([0] * count)
     return Wanted(
         asked_s=frozen_floats(2.0 * place for place in range(count)),
         pitch=frozen_ints(key_of(pitch) for pitch in pitches),
@@ -34,17 +33,19 @@ def plucks(pitches: Sequence[str]) -> Wanted:
         notes=tuple((place,) for place in range(count)),
         must_sound=np.zeros(count, dtype=np.bool_),
         on_track=frozen_ints([-1] * count),
+        outer=np.zeros(count, dtype=np.bool_),
+        nudge_ns=nothing,
+        shift_ns=nothing,
+        rest_ns=nothing,
+        foreign=np.zeros(count, dtype=np.bool_),
+        parent=frozen_ints([-1] * count),
+        again_of=frozen_ints([-1] * count),
     )
 
 
 def small_rules() -> Rules:
     movement = comb_with()
-    return Rules(
-        comb=comb_of(movement),
-        turning=turning_of(movement),
-        spacing=spacing_for(movement),
-        rulings=Rulings(left_out=frozenset(), forced={}),
-    )
+    return rules_of(movement, comb_of(movement), turning_of(movement), spacing_for(movement), asking())
 
 
 def test_a_fixed_transposition_is_kept_whatever_it_loses() -> None:
@@ -90,63 +91,60 @@ def test_nothing_beyond_the_range_is_searched() -> None:
     assert arranged([(0.0, "C5")], transpose={"mode": "best", "range": 5}).transposed_semitones == -5
 
 
-def test_a_transposition_whose_bound_cannot_win_is_not_tried() -> None:
-    tried: list[int] = []
+def test_the_transpositions_told_are_the_best_five_with_what_they_keep() -> None:
+    arrangement = arranged([(0.0, "C4"), (1.0, "D4"), (2.0, "E4"), (3.0, "G4")], transpose=BEST)
 
-    def spy(asked: Asked, turning: Turning, spacing: Spacing) -> Chosen | Clash:
-        tried.append(int(asked.key[0]) - key_of("C4"))
-        return choose(asked, turning, spacing)
-
-    best = best_transposed(plucks(["C4", "D4", "E4", "G4"]), small_rules(), Transpose(), spy)
-
-    # At 0 all four are on the comb; no other transposition has so many.
-    assert tried == [0]
-    assert (best.semitones, best.kept, best.bound) == (0, 4000, 4000)
-
-
-def test_another_chooser_takes_the_place_of_ours_and_its_bound_is_reported() -> None:
-    def never(asked: Asked, turning: Turning, spacing: Spacing) -> Chosen | Clash:
-        return Chosen(track_index=frozen_ints([-1] * len(asked.key)), bound=1500)
-
-    best = best_transposed(plucks(["C4"]), small_rules(), Transpose(mode="fixed", semitones=0), never)
-
-    # The chooser says 1500 and one pluck weighs 1000: the lower of the two true bounds holds.
-    assert (best.kept, best.bound) == (0, 1000)
+    # C D E G: all four at 0; by 2 up D E stand (on D and E), by 5 down G4 on D4, by 7 up C4 on G4; and so on.
+    by_semitones = {one.semitones: one.kept for one in arrangement.tried}
+    assert arrangement.tried[0].semitones == 0
+    assert len(by_semitones) == 5
+    for semitones, kept in by_semitones.items():
+        fixed = arranged(
+            [(0.0, "C4"), (1.0, "D4"), (2.0, "E4"), (3.0, "G4")],
+            transpose={"mode": "fixed", "semitones": semitones},
+        )
+        assert fixed.worth.kept == kept
+    keeps = [one.kept or 0 for one in arrangement.tried]
+    assert keeps == sorted(keeps, reverse=True)
 
 
-def test_the_bound_holds_for_every_transposition_tried_and_not_only_the_last() -> None:
-    def none(asked: Asked, turning: Turning, spacing: Spacing) -> Chosen | Clash:
-        return Chosen(track_index=frozen_ints([-1] * len(asked.key)), bound=99_000)
+def test_a_hopeless_transposition_is_left_half_way() -> None:
+    steps: list[int] = []
 
-    best = best_transposed(plucks(["C4", "D4", "C#4"]), small_rules(), Transpose(), none)
+    def spied(way: Way) -> list[Problem]:
+        return [pose(plucks(["C4", "D4", "E4", "G4"]), way.semitones, small_rules())]
 
-    # C and D are on the comb at 0 and E alone at +3; this chooser lets no transposition win.
-    assert (best.kept, best.bound) == (0, 2000)
+    class Spy(Budget):
+        """Counts how often it is asked whether anything is left."""
+
+        @property
+        def spent(self) -> bool:
+            steps.append(1)
+            return False
+
+    found = search([Way(semitones=s, speed_factor=1.0) for s in range(-12, 13)], spied, Spy())
+
+    # 25 transpositions of two steps each would be 50; five are told, and nothing else can be among them.
+    assert isinstance(found, Found)
+    assert (found.way.semitones, found.kept, found.bound) == (0, 4000, 4000)
+    assert len(steps) < 25
 
 
-def test_the_bound_counts_repeats_at_exactly_their_least_time() -> None:
-    def none(asked: Asked, turning: Turning, spacing: Spacing) -> Chosen | Clash:
-        return Chosen(track_index=frozen_ints([-1] * len(asked.key)), bound=99_000)
+def test_a_search_out_of_nodes_keeps_a_true_bound_and_says_so() -> None:
+    class Empty(Budget):
+        """Nothing left from the start."""
 
-    # C4 repeats after 1 s: 0, 1 and 2 s are all in order.
-    exact = replace(plucks(["C4"] * 3), asked_s=frozen_floats([0.0, 1.0, 2.0]))
+        def __init__(self) -> None:
+            super().__init__(nodes=0)
 
-    best = best_transposed(exact, small_rules(), Transpose(mode="fixed", semitones=0), none)
+    rules = replace(small_rules(), besides=(Beside(inner_index=0, outer_index=1, from_ns=-1000, to_ns=1000),))
+    together = replace(plucks(["C4", "D4"]), asked_s=frozen_floats([0.0, 0.0]))
 
-    assert best.bound == 3000
+    found = search([Way(semitones=0, speed_factor=1.0)], lambda way: [pose(together, 0, rules)], Empty())
 
-
-def test_of_two_tracks_the_chooser_bounds_twice_what_the_faster_can_hold() -> None:
-    asked_s, weight = frozen_floats([0.0, 0.1, 0.2, 0.3]), frozen_ints([1000, 3000, 2000, 2000])
-    close = replace(plucks(["E4"] * 4), asked_s=asked_s, weight=weight)
-    rules = small_rules()
-
-    chosen = choose(close.transposed(0, rules.comb.tracks_of_key), rules.turning, rules.spacing)
-
-    # One track holds one pluck in 0.3 s, the heaviest 3000; two tracks at most 6000, and here 5000.
-    assert isinstance(chosen, Chosen)
-    assert chosen.bound == 6000
-    assert [int(close.weight[pluck]) for pluck in np.flatnonzero(chosen.track_index >= 0)] == [3000, 2000]
+    # C and D stand beside each other: one of the two sounds. Each alone is 1000, so nothing keeps more than 2000.
+    assert isinstance(found, Found)
+    assert (found.kept, found.bound, found.stopped) == (1000, 2000, "nodes")
 
 
 def crowded_score(count: int, length_s: float, pitches: tuple[int, int]) -> Score:

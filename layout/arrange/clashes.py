@@ -1,0 +1,62 @@
+"""Which forced plucks have no room together: as few as will do, so that a person can see why."""
+
+from collections.abc import Callable, Sequence
+
+import numpy as np
+
+from layout.arrange.broken import broken_by
+from layout.arrange.budget import Budget
+from layout.arrange.by_time import Best, Stuck, best_by_time
+from layout.arrange.coupled import best_coupled
+from layout.arrange.problem import Problem
+from layout.mechanics.arrays import IntArray
+
+MOST_NODES = 2_000  # nodes for one trial; a trial that needs more is taken for possible
+
+
+def clashing(problem: Problem, plucks: IntArray) -> tuple[int, ...]:
+    """Forced plucks that cannot all sound, while they can without any one of them; rising.
+
+    Shortened from the end, then from the beginning, then one by one: what clashes is nearly always
+    near in time.
+
+    Args:
+        problem: The rules.
+        plucks: Plucks among which those that must sound have no room; rising.
+    """
+    forced = [pluck for pluck in plucks.tolist() if problem.must_sound[pluck]]
+    last = _least(lambda count: not _have_room(problem, forced[:count]), len(forced))
+    forced = forced[:last]
+    length = _least(lambda count: not _have_room(problem, forced[-count:]), len(forced))
+    forced = forced[-length:]
+    place = 0
+    while place < len(forced):
+        without = forced[:place] + forced[place + 1 :]
+        if without and not _have_room(problem, without):
+            forced = without
+        else:
+            place += 1
+    return tuple(forced)
+
+
+def _least(holds: Callable[[int], bool], most: int) -> int:
+    """The least count from 1 to `most` for which a condition holds that, once it holds, goes on holding."""
+    low, high = 1, most
+    while low < high:
+        middle = (low + high) // 2
+        if holds(middle):
+            high = middle
+        else:
+            low = middle + 1
+    return low
+
+
+def _have_room(problem: Problem, forced: Sequence[int]) -> bool:
+    """Whether these plucks can all sound, nothing else on the disc."""
+    plucks = np.array(forced, dtype=np.int64)
+    found = best_by_time(problem, plucks)
+    if isinstance(found, Stuck):
+        return False
+    if isinstance(found, Best) and not broken_by(problem, found.spots):
+        return True
+    return best_coupled(problem, plucks, Budget(nodes=MOST_NODES)).bound is not None

@@ -1,0 +1,224 @@
+"""Nudging: the moments at which chosen plucks sound, as near to those asked for as their tracks allow.
+
+The choice is made; nothing is dropped here. Where a track's repeat is kept at the moments asked for,
+nothing moves. Where it is not, its plucks and the other notes of their chords are moved by a linear
+program: what a nudge costs grows with the ladder below and with the pluck's worth; chords stay
+together and notes keep their order as far as they can.
+"""
+
+from collections import defaultdict
+from collections.abc import Iterator, Mapping, Sequence
+
+import numpy as np
+
+from layout.arrange.integer_program import Row
+from layout.arrange.linear_program import least_cost
+from layout.arrange.moments_kept import Moments, Push, moments_kept, pushes_of
+from layout.arrange.problem import Problem
+
+NS_PER_MS = 1_000_000
+
+# What each millisecond of a nudge costs, from here on. Up to 6 ms nobody hears it (the just noticeable
+# difference for notes up to 240 ms apart: Friberg and Sundberg, JASA 98, 1995, from memory); up to
+# 10 ms hardly anybody; beyond, many do. The steps of cost are our own.
+LADDER_MS = ((0.0, 1.0), (6.0, 3.0), (10.0, 10.0))
+
+APART_COST = 5.0  # of each millisecond a note leaves its chord, beside its own nudge: a chord should stay one
+OUT_OF_ORDER_COST = 10_000.0  # of each millisecond by which notes lose their order: only where nothing else is left
+
+# Order is heard from about 20 ms on (Hirsh, JASA 31, 1959, from memory): notes asked further apart keep it.
+ORDER_HEARD_NS = 20 * NS_PER_MS
+IN_ORDER_NS = NS_PER_MS  # how far apart they must stay
+
+_SETTLING_NS = 2  # what the linear program and rounding its moments may leave; they are put right from so much before
+
+
+def nudged(problem: Problem, spots: Sequence[int]) -> dict[int, int]:
+    """When each chosen spot sounds, in nanoseconds.
+
+    Args:
+        problem: The rules.
+        spots: A choice that keeps every rule.
+
+    Raises:
+        ValueError: The choice has no moments that keep every rule: a fault of the program.
+    """
+    at_ns = {spot: int(problem.asked_ns[spot]) for spot in spots}
+    pushes = pushes_of(problem, spots)
+    for moving in _moving(problem, spots, pushes):
+        wished = _wished(problem, moving, at_ns, pushes)
+        at_ns.update(wished)
+    return _put_right(problem, spots, at_ns)
+
+
+def _moving(problem: Problem, spots: Sequence[int], pushes: Sequence[Push]) -> list[list[int]]:
+    """The spots that may have to move, in blocks that do not touch: runs with a repeat too soon, and their chords."""
+    near: dict[int, list[int]] = defaultdict(list)
+    found: list[int] = []
+    for push in pushes:
+        spare_ns = int(problem.asked_ns[push.later] - problem.asked_ns[push.earlier]) - push.least_ns
+        if push.earlier != push.later and spare_ns < _reach_ns(problem, push.earlier) + _reach_ns(problem, push.later):
+            near[push.earlier].append(push.later)
+            near[push.later].append(push.earlier)
+        if spare_ns < 0:
+            found += [push.earlier, push.later]
+    moving = _reached(found, near)
+    chords: dict[int, list[int]] = defaultdict(list)
+    for spot in spots:
+        chords[int(problem.chord[problem.pluck[spot]])].append(spot)
+    mates = {spot: chords[int(problem.chord[problem.pluck[spot]])] for spot in moving}
+    joined = {spot: [*near[spot], *mates.get(spot, ())] for spot in moving}
+    for spot, others in mates.items():
+        for other in others:
+            joined.setdefault(other, []).append(spot)
+    blocks, seen = [], set[int]()
+    for spot in sorted(joined):
+        if spot not in seen:
+            block = sorted(_reached([spot], joined) & set(joined))
+            seen.update(block)
+            blocks.append(block)
+    return blocks
+
+
+def _reached(begin: Sequence[int], near: Mapping[int, Sequence[int]]) -> set[int]:
+    reached, waiting = set(begin), list(begin)
+    while waiting:
+        for other in near.get(waiting.pop(), ()):
+            if other not in reached:
+                reached.add(other)
+                waiting.append(other)
+    return reached
+
+
+def _reach_ns(problem: Problem, spot: int) -> int:
+    """How far a spot may be nudged, the farther way."""
+    asked_ns = problem.asked_ns[spot]
+    return int(max(problem.latest_ns[spot] - asked_ns, asked_ns - problem.earliest_ns[spot]))
+
+
+def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], pushes: Sequence[Push]) -> dict[int, int]:
+    """The moments of a block's spots at the least cost, all others standing where they are."""
+    program = _Program(problem, block)
+    for push in pushes:
+        if program.has(push.earlier) or program.has(push.later):
+            program.keep_apart(push.earlier, push.later, push.least_ns, at_ns)
+    for one, two in _order_heard(problem, block, sorted(at_ns, key=lambda spot: int(problem.asked_ns[spot]))):
+        program.keep_order(one, two, at_ns)
+    return program.moments_ns()
+
+
+def _order_heard(problem: Problem, block: Sequence[int], in_time: Sequence[int]) -> Iterator[tuple[int, int]]:
+    """Pairs of spots, one at least of the block, whose order is heard and could be lost by nudging."""
+    members = set(block)
+    widest_ns = max(_reach_ns(problem, spot) for spot in in_time)
+    asked_ns = problem.asked_ns[list(in_time)].tolist()
+    for place, one in enumerate(in_time):
+        for after in range(place + 1, len(in_time)):
+            two, apart_ns = in_time[after], asked_ns[after] - asked_ns[place]
+            if apart_ns >= 2 * widest_ns + IN_ORDER_NS:
+                break
+            if apart_ns > ORDER_HEARD_NS and (one in members or two in members):
+                yield one, two
+
+
+class _Program:
+    """The linear program of one block: nudges in milliseconds, each as steps of the ladder either way."""
+
+    def __init__(self, problem: Problem, block: Sequence[int]) -> None:
+        self._problem = problem
+        self._block = list(block)
+        self._columns: dict[int, tuple[list[int], list[int]]] = {}
+        self._cost: list[float] = []
+        self._lower: list[float] = []
+        self._upper: list[float] = []
+        self._rows: list[Row] = []
+        for spot in self._block:
+            asked_ns = int(problem.asked_ns[spot])
+            later = self._steps(spot, (int(problem.latest_ns[spot]) - asked_ns) / NS_PER_MS)
+            earlier = self._steps(spot, (asked_ns - int(problem.earliest_ns[spot])) / NS_PER_MS)
+            self._columns[spot] = later, earlier
+        self._keep_chords()
+
+    def has(self, spot: int) -> bool:
+        """Whether a spot is of the block."""
+        return spot in self._columns
+
+    def keep_apart(self, earlier: int, later: int, least_ns: int, at_ns: Mapping[int, int]) -> None:
+        """One spot sounds at least so long after another."""
+        self._rows.append(self._later_by(earlier, later, least_ns, at_ns, ()))
+
+    def keep_order(self, earlier: int, later: int, at_ns: Mapping[int, int]) -> None:
+        """One spot sounds after another, if that can be."""
+        lost = self._column(OUT_OF_ORDER_COST, float("inf"))
+        self._rows.append(self._later_by(earlier, later, IN_ORDER_NS, at_ns, (lost,)))
+
+    def moments_ns(self) -> dict[int, int]:
+        """The moments at the least cost; those asked for where there is no solution."""
+        values = least_cost(np.array(self._cost), np.array(self._lower), np.array(self._upper), self._rows)
+        moments = {}
+        for spot, (later, earlier) in self._columns.items():
+            nudge_ms = 0.0 if values is None else float(values[later].sum() - values[earlier].sum())
+            moments[spot] = int(self._problem.asked_ns[spot]) + round(nudge_ms * NS_PER_MS)
+        return moments
+
+    def _column(self, cost: float, most: float, least: float = 0.0) -> int:
+        self._cost.append(cost)
+        self._lower.append(least)
+        self._upper.append(most)
+        return len(self._cost) - 1
+
+    def _steps(self, spot: int, most_ms: float) -> list[int]:
+        """One column for every step of the ladder, each as long as the step, as far as the window goes."""
+        starts = [start for start, _ in LADDER_MS] + [float("inf")]
+        worth = float(self._problem.worth[spot])
+        return [
+            self._column(cost * worth, max(min(end, most_ms) - start, 0.0))
+            for (start, cost), end in zip(LADDER_MS, starts[1:], strict=True)
+        ]
+
+    def _keep_chords(self) -> None:
+        """What each note of a chord is nudged beside a common nudge costs as well."""
+        chords: dict[int, list[int]] = defaultdict(list)
+        for spot in self._block:
+            chords[int(self._problem.chord[self._problem.pluck[spot]])].append(spot)
+        for spots in chords.values():
+            if len(spots) > 1:
+                common = self._column(0.0, float("inf"), -float("inf"))
+                for spot in spots:
+                    self._rows += self._beside(spot, common)
+
+    def _beside(self, spot: int, common: int) -> Iterator[Row]:
+        later, earlier = self._columns[spot]
+        apart = self._column(APART_COST * float(self._problem.worth[spot]), float("inf"))
+        columns = [*later, *earlier, common, apart]
+        for way in (1.0, -1.0):
+            signs = [way] * len(later) + [-way] * len(earlier) + [-way, -1.0]
+            yield Row(columns=columns, coefficients=signs, most=0.0)
+
+    def _later_by(self, earlier: int, later: int, least_ns: int, at_ns: Mapping[int, int], slack: Sequence[int]) -> Row:
+        columns, signs, apart_ns = list(slack), [1.0] * len(slack), -least_ns
+        for spot, sign in ((later, 1.0), (earlier, -1.0)):
+            if spot in self._columns:
+                ahead, back = self._columns[spot]
+                columns += [*ahead, *back]
+                signs += [sign] * len(ahead) + [-sign] * len(back)
+                apart_ns += int(sign) * int(self._problem.asked_ns[spot])
+            else:
+                apart_ns += int(sign) * at_ns[spot]
+        return Row(columns=columns, coefficients=signs, least=-apart_ns / NS_PER_MS)
+
+
+def _put_right(problem: Problem, spots: Sequence[int], wished_ns: Mapping[int, int]) -> dict[int, int]:
+    """The wished moments, less what rounding broke; those asked for wherever that keeps every rule.
+
+    The earliest moments that are nowhere before the wished ones less a settling keep every rule if
+    any do, since the wished ones are never further off than that.
+    """
+    moved = {spot for spot in spots if wished_ns[spot] != problem.asked_ns[spot]}
+    not_before = {spot: wished_ns[spot] - (_SETTLING_NS if spot in moved else 0) for spot in spots}
+    kept = moments_kept(problem, spots, not_before)
+    if not isinstance(kept, Moments):
+        kept = moments_kept(problem, spots)
+    if not isinstance(kept, Moments):
+        raise ValueError("the choice has no moments that keep every rule")
+    return kept.earliest_ns

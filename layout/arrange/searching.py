@@ -1,0 +1,177 @@
+"""The search over transpositions and speeds: the most promising first, the hopeless left half way.
+
+Every candidate has a bound that is cheap at first (all that the comb has), then lower (each part of
+the tune by itself), then met (all together). The candidate with the highest bound goes one step on,
+until the best found beats every bound left. After that the search goes on until the next best
+transpositions are known too, as far as the report tells them.
+"""
+
+import heapq
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from layout.arrange.arrangement import Stopped, Tried
+from layout.arrange.budget import Budget
+from layout.arrange.problem import Problem
+from layout.arrange.solving import Impossible, Solved, Solving
+
+MOST_TOLD = 5  # transpositions the report tells
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Way:
+    """A transposition and a speed."""
+
+    semitones: int
+    speed_factor: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Found:
+    """What a search found.
+
+    Attributes:
+        way: The best transposition and speed.
+        problems: The problems posed for it, one for each disc.
+        solved: Their solutions.
+        kept: What they are worth together.
+        bound: Nothing that was searched is worth more.
+        tried: The best transpositions, each at its best speed, at most MOST_TOLD, best first.
+        stopped: What ended the search too early, if anything did.
+    """
+
+    way: Way
+    problems: tuple[Problem, ...]
+    solved: tuple[Solved, ...]
+    kept: int
+    bound: int
+    tried: tuple[Tried, ...]
+    stopped: Stopped | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class NoWay:
+    """Every way searched is impossible, each with what shows it: the disc, from 0, its problem and the plucks."""
+
+    shown_by: dict[Way, tuple[int, Problem, Impossible]]
+
+
+class _Candidate:
+    """One way, as far as it has been looked at."""
+
+    def __init__(self, way: Way, problems: Sequence[Problem]) -> None:
+        self.way = way
+        self.problems = tuple(problems)
+        self._solvings = [Solving(problem) for problem in problems]
+        self._taken_apart = False
+        self.solved: tuple[Solved, ...] | None = None
+        self.impossible: tuple[int, Problem, Impossible] | None = None
+
+    @property
+    def bound(self) -> int:
+        if self.solved is not None:
+            return sum(solved.bound for solved in self.solved)
+        return sum(solving.bound for solving in self._solvings)
+
+    @property
+    def kept(self) -> int:
+        return sum(solved.worth for solved in self.solved or ())
+
+    @property
+    def rank(self) -> tuple[int, float, int, int]:
+        """The better the greater: by bound, then nearest to as written, then lower."""
+        return _rank(self.bound, self.way)
+
+    def step(self, budget: Budget) -> None:
+        """One step on."""
+        if not self._taken_apart:
+            self._taken_apart = True
+            for disc, solving in enumerate(self._solvings):
+                solving.part_by_part(budget)
+                if solving.impossible is not None:
+                    self.impossible = (disc, solving.problem, solving.impossible)
+                    return
+            return
+        solved = []
+        for disc, solving in enumerate(self._solvings):
+            one = solving.together(budget)
+            if isinstance(one, Impossible):
+                self.impossible = (disc, solving.problem, one)
+                return
+            solved.append(one)
+        self.solved = tuple(solved)
+
+
+def _rank(worth: int, way: Way) -> tuple[int, float, int, int]:
+    return worth, -abs(way.speed_factor - 1), -abs(way.semitones), -way.semitones
+
+
+def search(ways: Sequence[Way], pose: Callable[[Way], Sequence[Problem]], budget: Budget) -> Found | NoWay:
+    """The way that keeps the most.
+
+    Of equal ones it is the one whose speed is nearest to as written, then the smallest
+    transposition, then the lower one.
+
+    Args:
+        ways: What to search; at least one.
+        pose: The problems of a way, one for each disc.
+        budget: What may be spent.
+    """
+    waiting = [_Candidate(way, pose(way)) for way in ways]
+    heap = [(_reversed(candidate), place) for place, candidate in enumerate(waiting)]
+    heapq.heapify(heap)
+    shown_by: dict[Way, tuple[int, Problem, Impossible]] = {}
+    finished: list[_Candidate] = []
+    while heap and not (finished and budget.spent) and not _enough(finished, waiting[heap[0][1]]):
+        _, place = heapq.heappop(heap)
+        candidate = waiting[place]
+        candidate.step(budget)
+        if candidate.impossible is not None:
+            shown_by[candidate.way] = candidate.impossible
+        elif candidate.solved is not None:
+            finished.append(candidate)
+        else:
+            heapq.heappush(heap, (_reversed(candidate), place))
+    if not finished:
+        return NoWay(shown_by=shown_by)
+    return _found(finished, [waiting[place] for _, place in heap], budget)
+
+
+def _reversed(candidate: _Candidate) -> tuple[float, ...]:
+    return tuple(-one for one in candidate.rank)
+
+
+def _enough(finished: Sequence[_Candidate], next_one: _Candidate) -> bool:
+    """Whether nothing left can be among the best transpositions told."""
+    best: dict[int, tuple[int, float, int, int]] = {}
+    for candidate in finished:
+        rank = _rank(candidate.kept, candidate.way)
+        best[candidate.way.semitones] = max(best.get(candidate.way.semitones, rank), rank)
+    told = sorted(best.values(), reverse=True)[:MOST_TOLD]
+    return len(told) == MOST_TOLD and next_one.rank < told[-1]
+
+
+def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: Budget) -> Found:
+    best = max(finished, key=lambda candidate: _rank(candidate.kept, candidate.way))
+    bound = max(candidate.bound for candidate in [*finished, *left])
+    told: dict[int, Tried] = {}
+    ranked = sorted(finished, key=lambda candidate: _rank(candidate.kept, candidate.way), reverse=True)
+    for candidate in [*ranked, *sorted(left, key=lambda candidate: candidate.rank, reverse=True)]:
+        told.setdefault(
+            candidate.way.semitones,
+            Tried(
+                semitones=candidate.way.semitones,
+                speed_factor=candidate.way.speed_factor,
+                kept=candidate.kept if candidate.solved is not None else None,
+                bound=candidate.bound,
+            ),
+        )
+    return Found(
+        way=best.way,
+        problems=best.problems,
+        solved=best.solved or (),
+        kept=best.kept,
+        bound=max(bound, best.kept),
+        tried=tuple(list(told.values())[:MOST_TOLD]),
+        stopped=budget.stopped if bound > best.kept else None,
+    )

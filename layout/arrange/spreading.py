@@ -1,0 +1,84 @@
+"""Chords too heavy for the drive may be spread: every note of one at its own moment, the lowest first."""
+
+from dataclasses import replace
+
+import numpy as np
+
+from layout.arrange.loads import heavy_moments
+from layout.arrange.problem import Problem
+from layout.mechanics.arrays import IntArray, frozen_ints
+
+NS_PER_MS = 1_000_000
+
+# How far either way of its moment a chord may be spread, as far as the nudge goes: from what nobody hears,
+# 6 ms (Friberg and Sundberg, JASA 98, 1995, from memory), to the most a nudge may be; the steps are our own.
+SPREAD_STEPS_MS = (6, 10, 20, 30, 50)
+
+
+def with_spread_chords(problem: Problem, largest_nudge_ns: int) -> Problem:
+    """The same problem with spots more for the chords that could load the disc too much.
+
+    Such a chord has, for every step the nudge allows, one more spot for each of its spots, whose
+    moment is that of its note in the chord spread by so much either way.
+
+    Args:
+        problem: Nothing spread in it; without a drive it is given back as it is.
+        largest_nudge_ns: No step is wider.
+    """
+    steps_ns = [step * NS_PER_MS for step in SPREAD_STEPS_MS if step * NS_PER_MS <= largest_nudge_ns]
+    if problem.drive is None or not steps_ns:
+        return problem
+    heavy = {
+        int(problem.chord[problem.pluck[spot]]) for spots, _ in heavy_moments(problem, _all(problem)) for spot in spots
+    }
+    sizes = np.bincount(problem.chord, minlength=1)
+    chords = [chord for chord in sorted(heavy) if sizes[chord] > 1]
+    if not chords:
+        return problem
+    added = np.flatnonzero(np.isin(problem.chord[problem.pluck], chords))
+    return _with_spots(problem, added, steps_ns)
+
+
+def spread_ns(rank: IntArray, count: IntArray, step_ns: int) -> IntArray:
+    """From a chord's moment to that of its notes, evenly spread from step before to step after, lowest first."""
+    return np.asarray(-step_ns + 2 * step_ns * rank // np.maximum(count - 1, 1), dtype=np.int64)
+
+
+def ranks_in_chords(chord: IntArray) -> tuple[IntArray, IntArray]:
+    """Of plucks in the order (moment, pitch): the place of each in its chord from the lowest, and the chord's size."""
+    starts = np.searchsorted(chord, chord)
+    ends = np.searchsorted(chord, chord, side="right")
+    return np.arange(len(chord)) - starts, ends - starts
+
+
+def _all(problem: Problem) -> IntArray:
+    return np.arange(problem.spot_count)
+
+
+def _with_spots(problem: Problem, added: IntArray, steps_ns: list[int]) -> Problem:
+    rank, count = ranks_in_chords(problem.chord)
+    moments = [problem.asked_ns]
+    for step_ns in steps_ns:
+        pluck = problem.pluck[added]
+        wished_ns = problem.asked_ns[added] + spread_ns(rank[pluck], count[pluck], step_ns)
+        moments.append(np.clip(wished_ns, problem.earliest_ns[added], problem.latest_ns[added]))
+    from_spot = np.concatenate([_all(problem), *[added] * len(steps_ns)])
+    spread = np.repeat(np.arange(len(steps_ns) + 1), [problem.spot_count, *[len(added)] * len(steps_ns)])
+    asked_ns = np.concatenate(moments)
+    order = np.lexsort((from_spot, spread, problem.pluck[from_spot]))
+    from_spot, spread, asked_ns = from_spot[order], spread[order], asked_ns[order]
+    pluck = problem.pluck[from_spot]
+    stays = spread == 0
+    return replace(
+        problem,
+        first_spot=frozen_ints(np.searchsorted(pluck, np.arange(problem.pluck_count + 1))),
+        pluck=frozen_ints(pluck),
+        track=frozen_ints(problem.track[from_spot]),
+        worth=frozen_ints(problem.worth[from_spot]),
+        asked_ns=frozen_ints(asked_ns),
+        earliest_ns=frozen_ints(np.where(stays, problem.earliest_ns[from_spot], asked_ns)),
+        latest_ns=frozen_ints(np.where(stays, problem.latest_ns[from_spot], asked_ns)),
+        least_ns=frozen_ints(problem.least_ns[from_spot]),
+        spread=frozen_ints(spread),
+        ringing_cost=frozen_ints(problem.ringing_cost[from_spot]),
+    )

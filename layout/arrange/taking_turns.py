@@ -1,0 +1,109 @@
+"""Teeth of one pitch take turns: each pluck on the one that has been quiet longest.
+
+Which of several equal tracks a pluck stands on is worth nothing to the search, but a tooth sounds
+better that does not ring any more, and its star wheel has longer to settle. Moments stay.
+"""
+
+from bisect import bisect_left, insort
+from collections import defaultdict
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+
+from layout.arrange.loads import overloads
+from layout.arrange.problem import Problem
+
+
+def taking_turns(problem: Problem, spots: Sequence[int], at_ns: Mapping[int, int]) -> tuple[int, ...]:
+    """The same plucks at the same moments, each on the most rested of its equal tracks with room.
+
+    Spots that differ in worth, window or rest from the one chosen are no equals. Where ringing
+    costs worth the search has chosen already, and nothing is changed.
+
+    Args:
+        problem: The rules.
+        spots: A choice that keeps every rule, by pluck.
+        at_ns: When each spot sounds.
+    """
+    if problem.ringing_cost.any():
+        return tuple(spots)
+    board = _Board(problem, {spot: at_ns[spot] for spot in spots})
+    for spot in sorted(spots, key=lambda one: (at_ns[one], one)):
+        board.move_to_most_rested(spot)
+    return tuple(sorted(board.at_ns))
+
+
+class _Board:
+    """Chosen spots on their tracks, sorted by moment."""
+
+    def __init__(self, problem: Problem, at_ns: dict[int, int]) -> None:
+        self._problem = problem
+        self.at_ns = at_ns
+        # A pluck moved beside another that is nudged could be pushed by it; such tracks are left as they are.
+        self._beside = {track for pair in problem.besides for track in (pair.inner_index, pair.outer_index)}
+        self._on_track: dict[int, list[tuple[int, int]]] = defaultdict(list)
+        for spot, moment_ns in at_ns.items():
+            insort(self._on_track[int(problem.track[spot])], (moment_ns, spot))
+
+    def move_to_most_rested(self, spot: int) -> None:
+        """Put a spot's pluck on the equal spot whose track was plucked longest ago, if that is another."""
+        at_ns = self.at_ns[spot]
+        equals = self._equals(spot)
+        if not equals:
+            return
+        row = self._on_track[int(self._problem.track[spot])]
+        row.remove((at_ns, spot))
+        del self.at_ns[spot]
+        best = min([spot, *equals], key=lambda one: self._rank(one, at_ns, spot))
+        insort(self._on_track[int(self._problem.track[best])], (at_ns, best))
+        self.at_ns[best] = at_ns
+
+    def _equals(self, spot: int) -> list[int]:
+        problem = self._problem
+        pluck = int(problem.pluck[spot])
+        return [
+            one
+            for one in range(int(problem.first_spot[pluck]), int(problem.first_spot[pluck + 1]))
+            if one != spot
+            and problem.worth[one] == problem.worth[spot]
+            and problem.spread[one] == problem.spread[spot]
+            and int(problem.track[one]) not in self._beside
+        ]
+
+    def _rank(self, spot: int, at_ns: int, now: int) -> tuple[bool, float, int, int]:
+        """Spots without room last, then by when the track last sounded; of unused tracks the fastest."""
+        track = int(self._problem.track[spot])
+        row = self._on_track[track]
+        place = bisect_left(row, (at_ns, spot))
+        last_ns = row[place - 1][0] if place else -float("inf")
+        return not (spot == now or self._has_room(spot, at_ns)), last_ns, int(self._problem.least_ns[spot]), -track
+
+    def _has_room(self, spot: int, at_ns: int) -> bool:
+        problem = self._problem
+        row = self._on_track[int(problem.track[spot])]
+        if row:
+            place = bisect_left(row, (at_ns, spot))
+            (before_ns, before), (after_ns, after) = row[place - 1], row[place % len(row)]
+            before_ns -= problem.turn_ns if place == 0 else 0
+            after_ns += problem.turn_ns if place == len(row) else 0
+            if at_ns - before_ns < problem.least_ns[before] or after_ns - at_ns < problem.least_ns[spot]:
+                return False
+            asked = [self._asked(one) for one in (before, spot, after)]
+            if (place and asked[0] > asked[1]) or (place < len(row) and asked[1] > asked[2]):
+                return False
+        return self._is_carried(spot)
+
+    def _asked(self, spot: int) -> tuple[int, int]:
+        """What the order on a track goes by."""
+        return int(self._problem.asked_ns[spot]), int(self._problem.pluck[spot])
+
+    def _is_carried(self, spot: int) -> bool:
+        """Whether the drive carries the spot beside all that stand."""
+        problem = self._problem
+        if problem.drive is None:
+            return True
+        reach_ns = 2 * problem.drive.widest_ns
+        standing = np.array([*self.at_ns, spot], dtype=np.int64)
+        apart_ns = np.abs(problem.asked_ns[standing] - problem.asked_ns[spot])
+        near = standing[(apart_ns <= reach_ns) | (problem.turn_ns - apart_ns <= reach_ns)]
+        return not overloads(problem, near)
