@@ -1,0 +1,1 @@
+"""The tests: a package of its own, so that no package of this name which a library installs is taken for it."""
