@@ -9,6 +9,7 @@ from layout.arrange.budget import Budget
 from layout.arrange.by_time import Best, Stuck, best_by_time
 from layout.arrange.coupled import best_coupled
 from layout.arrange.problem import Problem
+from layout.arrange.steps import Steps
 from layout.mechanics.arrays import IntArray
 
 MOST_NODES = 2_000  # nodes for one trial; a trial that needs more is taken for possible
@@ -54,7 +55,7 @@ def _least(holds: Callable[[int], bool], most: int) -> int:
 def _have_room(problem: Problem, forced: Sequence[int]) -> bool:
     """Whether these plucks can all sound, nothing else on the disc."""
     plucks = np.array(forced, dtype=np.int64)
-    found = best_by_time(problem, plucks)
+    found = best_by_time(Steps(problem), plucks)
     if isinstance(found, Stuck):
         return False
     if isinstance(found, Best) and not broken_by(problem, found.spots):

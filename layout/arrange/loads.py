@@ -60,16 +60,17 @@ def loads_at(problem: Problem, drive: Drive, spots: IntArray, at_ns: int) -> tup
 
 
 def _crowded_ns(problem: Problem, drive: Drive, spots: IntArray) -> list[int]:
-    """The asked moments at which the full loads of all spots asked within a window after would be too much."""
-    if not len(spots):
+    """The asked moments at which the full loads of all teeth lifted then would be too much."""
+    tracks = problem.track[spots].tolist()
+    rows = [(place, lift.load, lift.window_ns) for place, track in enumerate(tracks) for lift in drive.lifts[track]]
+    if not rows:
         return []
-    full = np.array([sum(lift.load for lift in lifts) for lifts in drive.lifts], dtype=np.int64)
-    order = spots[np.argsort(problem.asked_ns[spots], kind="stable")]
-    asked_ns, loads = problem.asked_ns[order], full[problem.track[order]]
+    place, load, window_ns = (np.array(column, dtype=np.int64) for column in zip(*rows, strict=True))
+    moments_ns = np.unique(problem.asked_ns[spots])
+    changes = np.zeros(len(moments_ns) + 1, dtype=np.int64)
     # Once more for the turn after: its first plucks may be lifted while the last of this one are.
-    asked_ns, loads = np.concatenate([asked_ns, asked_ns + problem.turn_ns]), np.concatenate([loads, loads])
-    moments_ns = np.unique(asked_ns[: len(order)])
-    summed = np.concatenate([[0], np.cumsum(loads)])
-    first, last = np.searchsorted(asked_ns, moments_ns), np.searchsorted(asked_ns, moments_ns + drive.widest_ns)
-    crowded: list[int] = moments_ns[summed[last] - summed[first] > drive.limit].tolist()
+    for released_ns in (problem.asked_ns[spots][place], problem.asked_ns[spots][place] + problem.turn_ns):
+        np.add.at(changes, np.searchsorted(moments_ns, released_ns - window_ns, side="right"), load)
+        np.add.at(changes, np.searchsorted(moments_ns, released_ns, side="right"), -load)
+    crowded: list[int] = moments_ns[np.cumsum(changes)[:-1] > drive.limit].tolist()
     return crowded

@@ -6,6 +6,7 @@ program: what a nudge costs grows with the ladder below and with the pluck's wor
 together and notes keep their order as far as they can.
 """
 
+from bisect import bisect_left
 from collections import defaultdict
 from collections.abc import Iterator, Mapping, Sequence
 
@@ -45,10 +46,32 @@ def nudged(problem: Problem, spots: Sequence[int]) -> dict[int, int]:
     """
     at_ns = {spot: int(problem.asked_ns[spot]) for spot in spots}
     pushes = pushes_of(problem, spots)
-    for moving in _moving(problem, spots, pushes):
-        wished = _wished(problem, moving, at_ns, pushes)
-        at_ns.update(wished)
+    blocks = _moving(problem, spots, pushes)
+    if blocks:
+        company = _Company(problem, spots, pushes)
+        for block in blocks:
+            at_ns.update(_wished(problem, block, at_ns, company))
     return _put_right(problem, spots, at_ns)
+
+
+class _Company:
+    """What stands near a spot: the pushes it has part in, and the spots near in time."""
+
+    def __init__(self, problem: Problem, spots: Sequence[int], pushes: Sequence[Push]) -> None:
+        self.pushes: dict[int, list[Push]] = defaultdict(list)
+        for push in pushes:
+            for spot in {push.earlier, push.later}:
+                self.pushes[spot].append(push)
+        self._in_time = sorted((int(problem.asked_ns[spot]), spot) for spot in spots)
+        self._far_ns = 2 * max(_reach_ns(problem, spot) for spot in spots) + IN_ORDER_NS
+
+    def order_heard(self, spot: int, asked_ns: int) -> Iterator[tuple[int, int]]:
+        """Pairs of this spot and another whose order is heard and could be lost by nudging, the earlier first."""
+        first = bisect_left(self._in_time, (asked_ns - self._far_ns + 1,))
+        last = bisect_left(self._in_time, (asked_ns + self._far_ns,))
+        for other_ns, other in self._in_time[first:last]:
+            if abs(other_ns - asked_ns) > ORDER_HEARD_NS:
+                yield (spot, other) if asked_ns < other_ns else (other, spot)
 
 
 def _moving(problem: Problem, spots: Sequence[int], pushes: Sequence[Push]) -> list[list[int]]:
@@ -96,29 +119,16 @@ def _reach_ns(problem: Problem, spot: int) -> int:
     return int(max(problem.latest_ns[spot] - asked_ns, asked_ns - problem.earliest_ns[spot]))
 
 
-def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], pushes: Sequence[Push]) -> dict[int, int]:
+def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], company: _Company) -> dict[int, int]:
     """The moments of a block's spots at the least cost, all others standing where they are."""
     program = _Program(problem, block)
+    pushes = dict.fromkeys(push for spot in block for push in company.pushes[spot])
     for push in pushes:
-        if program.has(push.earlier) or program.has(push.later):
-            program.keep_apart(push.earlier, push.later, push.least_ns, at_ns)
-    for one, two in _order_heard(problem, block, sorted(at_ns, key=lambda spot: int(problem.asked_ns[spot]))):
-        program.keep_order(one, two, at_ns)
+        program.keep_apart(push.earlier, push.later, push.least_ns, at_ns)
+    heard = dict.fromkeys(pair for spot in block for pair in company.order_heard(spot, int(problem.asked_ns[spot])))
+    for earlier, later in heard:
+        program.keep_order(earlier, later, at_ns)
     return program.moments_ns()
-
-
-def _order_heard(problem: Problem, block: Sequence[int], in_time: Sequence[int]) -> Iterator[tuple[int, int]]:
-    """Pairs of spots, one at least of the block, whose order is heard and could be lost by nudging."""
-    members = set(block)
-    widest_ns = max(_reach_ns(problem, spot) for spot in in_time)
-    asked_ns = problem.asked_ns[list(in_time)].tolist()
-    for place, one in enumerate(in_time):
-        for after in range(place + 1, len(in_time)):
-            two, apart_ns = in_time[after], asked_ns[after] - asked_ns[place]
-            if apart_ns >= 2 * widest_ns + IN_ORDER_NS:
-                break
-            if apart_ns > ORDER_HEARD_NS and (one in members or two in members):
-                yield one, two
 
 
 class _Program:
@@ -138,10 +148,6 @@ class _Program:
             earlier = self._steps(spot, (asked_ns - int(problem.earliest_ns[spot])) / NS_PER_MS)
             self._columns[spot] = later, earlier
         self._keep_chords()
-
-    def has(self, spot: int) -> bool:
-        """Whether a spot is of the block."""
-        return spot in self._columns
 
     def keep_apart(self, earlier: int, later: int, least_ns: int, at_ns: Mapping[int, int]) -> None:
         """One spot sounds at least so long after another."""

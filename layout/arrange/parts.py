@@ -5,19 +5,39 @@ by a chain between them. Rules across tracks (webs, load) and the end of the tur
 they join is joined when a choice breaks them.
 """
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from layout.arrange.problem import NO_PLUCK, Problem
 from layout.mechanics.arrays import IntArray
 
 
-def parts_of(problem: Problem) -> list[IntArray]:
-    """The plucks that have spots, part by part, in rising order within each; parts by their first pluck."""
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Parts:
+    """The plucks of a problem that have spots.
+
+    Attributes:
+        alone: Plucks that touch no other, rising.
+        together: The plucks of every other part, rising; parts by their first pluck.
+    """
+
+    alone: IntArray
+    together: tuple[IntArray, ...]
+
+
+def parts_of(problem: Problem) -> Parts:
+    """The parts of a problem; plucks without spots are in none."""
     played = np.flatnonzero(np.diff(problem.first_spot) > 0)
-    root = _joined(problem.pluck_count, _links(problem))[played]
+    links = _links(problem)
+    touching = np.zeros(problem.pluck_count, dtype=np.bool_)
+    touching[links] = True
+    plucks = np.flatnonzero(touching)
+    root = _joined(problem.pluck_count, links)[plucks]
     order = np.argsort(root, kind="stable")
     starts = np.flatnonzero(np.diff(root[order], prepend=-1))
-    return np.split(played[order], starts[1:]) if len(starts) else []
+    together = np.split(plucks[order], starts[1:]) if len(starts) else []
+    return Parts(alone=played[~touching[played]], together=tuple(together))
 
 
 def _links(problem: Problem) -> IntArray:

@@ -19,6 +19,7 @@ of layout.arrange.weights: sums of whole numbers are exact, so the answer is the
 """
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
@@ -46,14 +47,14 @@ class Lift:
     window_ns: int
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@dataclass(frozen=True, kw_only=True)
 class Drive:
     """What the teeth load the disc with, by track, and what it may carry."""
 
     lifts: tuple[tuple[Lift, ...], ...]
     limit: int
 
-    @property
+    @cached_property
     def widest_ns(self) -> int:
         """The longest window of all teeth; 0 for none."""
         return max((lift.window_ns for lifts in self.lifts for lift in lifts), default=0)

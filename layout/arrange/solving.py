@@ -6,7 +6,7 @@ they are the best. Where they do, the parts that break a rule are put into one g
 program solves by all rules; and so on, until nothing is broken.
 """
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -18,6 +18,7 @@ from layout.arrange.coupled import best_coupled, worth_of
 from layout.arrange.fitting import fitted
 from layout.arrange.parts import parts_of
 from layout.arrange.problem import Problem
+from layout.arrange.steps import Steps
 from layout.mechanics.arrays import IntArray
 
 
@@ -68,20 +69,24 @@ class Solving:
         self.impossible: Impossible | None = None
         self._silent = np.flatnonzero(problem.must_sound & (np.diff(problem.first_spot) == 0))
         self._groups: list[_Group] | None = None
+        self._alone: dict[int, int] = {}
 
     def part_by_part(self, budget: Budget) -> None:
         """The first step: every part by itself."""
         if len(self._silent):
             self.impossible = Impossible(plucks=self._silent)
             return
+        parts = parts_of(self.problem)
+        self._alone = self._best_spots(parts.alone)
         self._groups = []
-        for plucks in parts_of(self.problem):
-            group = self._alone(plucks, budget)
+        steps = Steps(self.problem)
+        for plucks in parts.together:
+            group = self._part(steps, plucks, budget)
             if group is None:
                 self.impossible = Impossible(plucks=plucks)
                 return
             self._groups.append(group)
-        self.bound = min(self.bound, sum(group.bound for group in self._groups))
+        self._lower_bound()
 
     def together(self, budget: Budget) -> Solved | Impossible:
         """The last step: what is broken together, solved together."""
@@ -97,13 +102,25 @@ class Solving:
                 if group is None:
                     return Impossible(plucks=plucks)
                 self._groups.append(group)
-            self.bound = min(self.bound, sum(group.bound for group in self._groups))
+            self._lower_bound()
         spots = self._chosen()
         worth = worth_of(self.problem, spots)
         return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
 
-    def _alone(self, plucks: IntArray, budget: Budget) -> _Group | None:
-        found = best_by_time(self.problem, plucks)
+    def _lower_bound(self) -> None:
+        alone = int(self.problem.worth[list(self._alone.values())].sum())
+        self.bound = min(self.bound, alone + sum(group.bound for group in self._groups or ()))
+
+    def _best_spots(self, plucks: IntArray) -> dict[int, int]:
+        """The first of the best unspread spots of each of these plucks."""
+        problem = self.problem
+        spots = np.flatnonzero((problem.spread == 0) & np.isin(problem.pluck, plucks))
+        spots = spots[np.lexsort((-problem.worth[spots], problem.pluck[spots]))]
+        firsts = spots[np.flatnonzero(np.diff(problem.pluck[spots], prepend=-1))]
+        return dict(zip(problem.pluck[firsts].tolist(), firsts.tolist(), strict=True))
+
+    def _part(self, steps: Steps, plucks: IntArray, budget: Budget) -> _Group | None:
+        found = best_by_time(steps, plucks)
         if isinstance(found, Stuck):
             return None
         if isinstance(found, Best):
@@ -123,11 +140,17 @@ class Solving:
         return _Group(plucks=plucks, spots=best, bound=found.bound)
 
     def _chosen(self) -> tuple[int, ...]:
-        return tuple(sorted(spot for group in self._groups or () for spot in group.spots))
+        spots = [spot for group in self._groups or () for spot in group.spots]
+        return tuple(sorted([*spots, *self._alone.values()]))
 
-    def _joined(self, broken: Iterable[Sequence[int]]) -> list[IntArray]:
+    def _joined(self, broken: Sequence[Sequence[int]]) -> list[IntArray]:
         """Take the groups with a part in a breach off the list, and give their plucks, joined as the breaches say."""
         groups = self._groups or []
+        for spot in [spot for spots in broken for spot in spots]:
+            pluck = int(self.problem.pluck[spot])
+            if pluck in self._alone:
+                del self._alone[pluck]
+                groups.append(_Group(plucks=np.array([pluck]), spots=(spot,), bound=int(self.problem.worth[spot])))
         group_of = {pluck: place for place, group in enumerate(groups) for pluck in group.plucks.tolist()}
         sets: list[set[int]] = []
         for spots in broken:

@@ -41,7 +41,8 @@ class _Board:
         self.at_ns = at_ns
         # A pluck moved beside another that is nudged could be pushed by it; such tracks are left as they are.
         self._beside = {track for pair in problem.besides for track in (pair.inner_index, pair.outer_index)}
-        self._on_track: dict[int, list[tuple[int, int]]] = defaultdict(list)
+        self._nudge_ns = int((problem.latest_ns - problem.earliest_ns).max(initial=0))
+        self._on_track: dict[int, list[tuple[int, ...]]] = defaultdict(list)
         for spot, moment_ns in at_ns.items():
             insort(self._on_track[int(problem.track[spot])], (moment_ns, spot))
 
@@ -91,19 +92,22 @@ class _Board:
             asked = [self._asked(one) for one in (before, spot, after)]
             if (place and asked[0] > asked[1]) or (place < len(row) and asked[1] > asked[2]):
                 return False
-        return self._is_carried(spot)
+        return self._is_carried(spot, at_ns)
 
     def _asked(self, spot: int) -> tuple[int, int]:
         """What the order on a track goes by."""
         return int(self._problem.asked_ns[spot]), int(self._problem.pluck[spot])
 
-    def _is_carried(self, spot: int) -> bool:
+    def _is_carried(self, spot: int, at_ns: int) -> bool:
         """Whether the drive carries the spot beside all that stand."""
         problem = self._problem
         if problem.drive is None:
             return True
-        reach_ns = 2 * problem.drive.widest_ns
-        standing = np.array([*self.at_ns, spot], dtype=np.int64)
-        apart_ns = np.abs(problem.asked_ns[standing] - problem.asked_ns[spot])
-        near = standing[(apart_ns <= reach_ns) | (problem.turn_ns - apart_ns <= reach_ns)]
-        return not overloads(problem, near)
+        reach_ns = 2 * problem.drive.widest_ns + self._nudge_ns
+        near = [spot]
+        for turn_ns in (-problem.turn_ns, 0, problem.turn_ns):
+            for row in self._on_track.values():
+                first = bisect_left(row, (at_ns + turn_ns - reach_ns,))
+                last = bisect_left(row, (at_ns + turn_ns + reach_ns,))
+                near += [one for _, one in row[first:last]]
+        return not overloads(problem, np.array(near, dtype=np.int64))
