@@ -6,17 +6,18 @@ read → arrange → place → play → check → report → cut → write; and,
 import hashlib
 import json
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
-from layout.arrange import arrange
+from layout.arrange import Clock, arrange_discs
 from layout.arrange.arrangement import Arrangement
-from layout.check import check
+from layout.check import WholeTune, check
 from layout.check.finding import Finding, stands
 from layout.cut import plan_cuts
 from layout.cut.plan import CutPlan
 from layout.documents import Cutter, Movement, Settings
+from layout.errors import DocumentError, Problem
 from layout.limits import limits_told
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.spacing import spacing_of
@@ -27,6 +28,7 @@ from layout.play import play
 from layout.play.plucks import Plucks
 from layout.read import read_score
 from layout.read.limits import LIMITS
+from layout.read.score import Score
 from layout.read_back import read_back
 from layout.report import report_on
 from layout.version import ENGINE_VERSION
@@ -35,6 +37,8 @@ from layout.write.laid_out import LaidOut
 
 CUTTING_FILES = ("disc.dxf", "hits.csv")
 FILES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json")
+
+_NOT_ASKED = ("outside-passage", "ruled-out")
 
 LIMITS_OF_READING = limits_told(LIMITS, prefix="tune_")
 
@@ -62,58 +66,100 @@ class CheckedDrawing:
         return not stands(self.findings)
 
 
-def fingerprint_of(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings) -> str:
-    """Sixteen hex digits that name these inputs and this engine: the id of their layout."""
-    parts = {
+def fingerprint_of(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1) -> str:
+    """Sixteen hex digits that name these inputs and this engine: the id of their layout.
+
+    Args:
+        tune: The MIDI file.
+        movement: The movement.
+        cutter: The cutter.
+        settings: What the maker asks for.
+        number: Which disc of settings.discs, from 1.
+    """
+    parts: dict[str, object] = {
         "engine": ENGINE_VERSION,
         "tune": hashlib.sha256(tune).hexdigest(),
         "movement": movement.model_dump(mode="json"),
-        "stated": {pointer: number.model_dump(mode="json") for pointer, number in movement.stated.items()},
+        "stated": {pointer: worth.model_dump(mode="json") for pointer, worth in movement.stated.items()},
         "cutter": cutter.model_dump(mode="json"),
         "settings": settings.model_dump(mode="json"),
     }
+    if settings.discs > 1:
+        parts["disc_number"] = number
     return hashlib.sha256(json.dumps(parts, sort_keys=True).encode()).hexdigest()[:16]
 
 
-def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings) -> LaidOut:
-    """The tune laid out on a disc for this movement and cutter, checked.
+def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None) -> LaidOut:
+    """The tune laid out on one disc for this movement and cutter, checked.
 
     Args:
         tune: A Standard MIDI File.
         movement: The movement the disc is for.
         cutter: The cutter that makes it.
-        settings: What the maker asks for.
+        settings: What the maker asks for; one disc.
+        clock: For settings.time_limit_s: seconds of a clock that only goes forward. Without it there is no such limit.
 
     Raises:
         MidiReadError: The tune cannot be read.
         RulingError: The settings' rulings contradict each other, the tune or the comb.
+        DocumentError: The settings ask for several discs, or for a passage that cannot be.
+    """
+    if settings.discs > 1:
+        message = f"{settings.discs} discs are asked for where one is made; ask for 1, or for all of them together"
+        raise DocumentError(document="settings", problems=(Problem(pointer="/discs", message=message),))
+    [laid_out] = lay_out_discs(tune, movement, cutter, settings, clock)
+    return laid_out
+
+
+def lay_out_discs(
+    tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+) -> tuple[LaidOut, ...]:
+    """The tune laid out on settings.discs discs, in the order they are played, each checked.
+
+    All have one transposition and one speed; a note of another disc is outside the passage of this one.
+
+    Args:
+        tune: A Standard MIDI File.
+        movement: The movement the discs are for.
+        cutter: The cutter that makes them.
+        settings: What the maker asks for.
+        clock: As for `lay_out`.
+
+    Raises:
+        MidiReadError: The tune cannot be read.
+        RulingError: The settings' rulings contradict each other, the tune or the comb.
+        DocumentError: The settings ask for a passage that cannot be, or more discs than there are notes for.
     """
     score = read_score(tune, sequence=settings.sequence)
     turning = turning_of(movement)
     spacing = spacing_of(movement, turning, pattern_of(movement, cutter), cutter.min_web_mm)
-    arrangement = _with_weights(arrange(score, movement, settings, spacing), score.note_count)
-    disc = place(arrangement, movement, cutter)
-    return LaidOut(
-        title=settings.title or score.title or "untitled tune",
-        fingerprint=fingerprint_of(tune, movement, cutter, settings),
-        score=score,
-        arrangement=arrangement,
-        disc=disc,
-        plucks=play(disc),
-        findings=check(disc, arrangement),
-        report=report_on(score, arrangement, disc),
+    arrangements = arrange_discs(score, movement, settings, spacing, clock)
+    whole = _whole_tune(score, arrangements)
+    discs = [place(arrangement, movement, cutter) for arrangement in arrangements]
+    return tuple(
+        LaidOut(
+            title=settings.title or score.title or "untitled tune",
+            fingerprint=fingerprint_of(tune, movement, cutter, settings, number),
+            score=score,
+            arrangement=arrangement,
+            disc=disc,
+            plucks=play(disc),
+            findings=check(disc, arrangement, whole),
+            report=report_on(score, arrangement, disc),
+            disc_number=number,
+            disc_count=len(discs),
+        )
+        for number, (arrangement, disc) in enumerate(zip(arrangements, discs, strict=True), start=1)
     )
 
 
-def _with_weights(arrangement: Arrangement, note_count: int) -> Arrangement:
-    # Only until the arranger gives the weights it works with: here all notes asked for are plain inner ones.
-    if len(arrangement.note_weight) == note_count:
-        return arrangement
-    not_asked = ("outside-passage", "ruled-out", "past-the-turn")
-    weight = np.full(note_count, 1000, dtype=np.int64)
-    weight[[left.note for left in arrangement.left_out if left.reason in not_asked]] = 0
-    none = np.zeros(note_count, dtype=np.bool_)
-    return replace(arrangement, note_weight=weight, highest=none, lowest=none, melody=none)
+def _whole_tune(score: Score, arrangements: tuple[Arrangement, ...]) -> WholeTune:
+    """What all discs play together: the notes that some disc is asked for."""
+    never = set.intersection(
+        *({left.note for left in each.left_out if left.reason in _NOT_ASKED} for each in arrangements)
+    )
+    asked = np.setdiff1d(np.arange(score.note_count), np.fromiter(never, dtype=np.int64))
+    return WholeTune(onset_s=score.onset_s[asked], from_s=arrangements[0].from_s, disc_count=len(arrangements))
 
 
 def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:
@@ -130,6 +176,7 @@ def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, byt
         title=laid_out.title,
         fingerprint=laid_out.fingerprint,
         not_good=None if laid_out.good_to_cut else not_good,
+        part=laid_out.part,
     )
     return {name: _WRITERS[name](plan, laid_out) for name in given}
 

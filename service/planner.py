@@ -1,5 +1,6 @@
 """The computation as the service and the command see it: a port, filled by `layout.walk`, by a fake in tests."""
 
+from collections.abc import Callable
 from typing import Any, Protocol, TypeVar
 
 from layout.check.finding import Finding
@@ -7,6 +8,8 @@ from layout.documents import Cutter, Movement, Settings
 from layout.place.disc import Disc
 from layout.play.plucks import Plucks
 from layout.read.score import Score
+
+Clock = Callable[[], float]  # seconds, only ever forward
 
 
 class Layout(Protocol):
@@ -19,6 +22,14 @@ class Layout(Protocol):
     @property
     def fingerprint(self) -> str:
         """Sixteen hex digits that name the inputs."""
+
+    @property
+    def disc_number(self) -> int:
+        """Which disc of its set it is, from 1."""
+
+    @property
+    def disc_count(self) -> int:
+        """How many discs the tune is cut into."""
 
     @property
     def score(self) -> Score:
@@ -55,11 +66,15 @@ LayoutT = TypeVar("LayoutT", bound=Layout)
 class Planner(Protocol[LayoutT]):
     """The walk from bytes to files; see `layout.walk` for what each gives and raises."""
 
-    def lay_out(self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings) -> LayoutT:
-        """The tune laid out and checked."""
+    def lay_out_discs(
+        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+    ) -> tuple[LayoutT, ...]:
+        """The tune laid out and checked, on as many discs as the settings ask for, within their time limit."""
 
-    def fingerprint_of(self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings) -> str:
-        """The id of a layout before it is computed."""
+    def fingerprint_of(
+        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1
+    ) -> str:
+        """The id of a layout before it is computed, by the number of its disc, from 1."""
 
     def files_of(self, laid_out: LayoutT, *, not_good: str | None = None) -> dict[str, bytes]:
         """The files by name, without the cutting files where they are kept back."""

@@ -14,7 +14,6 @@ Wilber 1987, Geometric applications of a matrix-searching algorithm, Algorithmic
 """
 
 import math
-from bisect import bisect_right
 from dataclasses import dataclass
 
 import numpy as np
@@ -25,6 +24,7 @@ from layout.arrange.passage import passage_of
 from layout.documents.settings import Settings
 from layout.errors import DocumentError, Problem
 from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.filling import least_turn_s
 from layout.read.score import Score
 
 EVEN = 1000  # thousandths; the share of an even disc
@@ -83,7 +83,7 @@ def fitting_factor(score: Score, settings: Settings, ruled_out: frozenset[int], 
     """
     from_s = passage_of(score, settings.passage).from_s
     onset_s = np.unique(score.onset_s[_asked(score, settings, ruled_out)]).tolist()
-    longest_s = _least_longest_s(onset_s, from_s, settings.discs) if onset_s else 0.0
+    longest_s = least_turn_s(onset_s, from_s, settings.discs)
     wanted = longest_s / free_turn_s if longest_s > 0 else 1.0
     return min(max(wanted, settings.speed.least), settings.speed.most)
 
@@ -231,35 +231,3 @@ def _best_first(discs: _Discs, before: IntArray, after: IntArray, least: int) ->
         chosen[rows] = first[at_best[np.searchsorted(at_best, begin)]]
         stride //= 2
     return points, chosen
-
-
-def _least_longest_s(onset_s: list[float], from_s: float, disc_count: int) -> float:
-    """The least time that, given to every disc, holds these onsets on so many; exact, one of their differences."""
-    low_s, high_s = onset_s[0] - from_s, onset_s[-1] - from_s
-    while low_s < high_s:
-        tried_s = (low_s + high_s) / 2
-        filled = _filled(onset_s, from_s, tried_s)
-        if filled.disc_count <= disc_count:
-            high_s = filled.longest_s
-        else:
-            low_s = filled.next_s
-    return high_s
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Filled:
-    """Discs filled one after the other: how many, the longest, and the least time that would fill one further."""
-
-    disc_count: int
-    longest_s: float
-    next_s: float
-
-
-def _filled(onset_s: list[float], from_s: float, turn_s: float) -> _Filled:
-    begin_s, after, disc_count, longest_s, next_s = from_s, 0, 0, 0.0, math.inf
-    while after < len(onset_s):
-        after = bisect_right(onset_s, turn_s, lo=after, key=lambda moment_s: moment_s - begin_s)
-        disc_count, longest_s = disc_count + 1, max(longest_s, onset_s[after - 1] - begin_s)
-        if after < len(onset_s):
-            next_s, begin_s = min(next_s, onset_s[after] - begin_s), onset_s[after]
-    return _Filled(disc_count=disc_count, longest_s=longest_s, next_s=next_s)

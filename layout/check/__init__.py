@@ -12,7 +12,7 @@ from layout.check.blank import (
 )
 from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_has_the_tool, slits_are_wide_enough
 from layout.check.finding import Code, Finding, Level, Place, stands
-from layout.check.music import music_fits_the_turn, something_plays
+from layout.check.music import WholeTune, music_fits_the_turn, something_plays
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
 from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
 from layout.check.star_wheel import (
@@ -27,7 +27,7 @@ from layout.check.star_wheel import (
 from layout.check.webs import webs_between_openings_hold
 from layout.place.disc import Disc
 
-__all__ = ["Code", "Finding", "Level", "Place", "check", "stands"]
+__all__ = ["Code", "Finding", "Level", "Place", "WholeTune", "check", "stands"]
 
 DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     cutter_can_form,
@@ -56,7 +56,7 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
 )
 
 
-def check(disc: Disc, arrangement: Arrangement | None = None) -> tuple[Finding, ...]:
+def check(disc: Disc, arrangement: Arrangement | None = None, whole: WholeTune | None = None) -> tuple[Finding, ...]:
     """Every finding on a disc, in the order of the checks, by place within each.
 
     A disc without projections has one finding: nothing plays.
@@ -64,10 +64,11 @@ def check(disc: Disc, arrangement: Arrangement | None = None) -> tuple[Finding, 
     Args:
         disc: The disc.
         arrangement: What it was placed from; None for a disc read back from a drawing.
+        whole: What all discs of its set play, so that one too long tells how many it takes.
     """
     of_music = something_plays(arrangement, disc)
     if arrangement is not None:
-        of_music += music_fits_the_turn(arrangement, disc)
+        of_music += music_fits_the_turn(arrangement, disc, whole)
     if not disc.projection_count:
         return tuple(of_music)
     return tuple(of_music + [finding for one_check in DISC_CHECKS for finding in one_check(disc)])

@@ -88,6 +88,7 @@ class CutPlan:
         at_mm: Shape (n, 2). In that order, as drawn: the strike point (press) or the middle of the
             working edge (laser).
         tool: The press tool of every hit; "" on a laser.
+        part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
     """
 
     title: str
@@ -99,3 +100,4 @@ class CutPlan:
     order: IntArray
     at_mm: FloatArray
     tool: str
+    part: str = ""

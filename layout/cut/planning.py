@@ -16,7 +16,7 @@ from layout.mechanics.arrays import IntArray
 from layout.place.disc import Disc
 
 
-def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None) -> CutPlan:
+def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None, part: str = "") -> CutPlan:
     """The two drawings of a disc, as drawn, and the order of cutting.
 
     What is marked comes first, while the blank lies still; then inside before outside: projections
@@ -30,14 +30,16 @@ def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None)
         title: The tune's title; drawn in ASCII, and shortened where it is engraved.
         fingerprint: Of all inputs.
         not_good: The reason for which a disc with error-level findings is cut all the same, else None.
+        part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
     """
     order = cutting_order(disc)
     at_mm = struck_at_mm(disc, order)
     mirror = -1 if disc.cutter.drawn_from == "star-side" else 1
     marking = _marking(disc, mirror)
     cut = _cut(disc, order)
+    words = Words(title=title, fingerprint=fingerprint, not_good=not_good, is_record=False, part=part)
     drawings = [
-        _drawing(marking, entities, Words(title=title, fingerprint=fingerprint, not_good=not_good, is_record=is_record))
+        _drawing(marking, entities, replace(words, is_record=is_record))
         for is_record, entities in ((False, cut), (True, (*formed_projections(disc, order), *cut)))
     ]
     return CutPlan(
@@ -45,6 +47,7 @@ def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None)
         fingerprint=fingerprint,
         drawn_from=disc.cutter.drawn_from,
         not_good=not_good,
+        part=part,
         disc=drawings[0],
         record=drawings[1],
         order=order,

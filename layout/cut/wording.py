@@ -23,12 +23,14 @@ class Words:
         fingerprint: Of all inputs.
         not_good: The reason for which a faulty disc is cut, if it is.
         is_record: Whether it is the record, which is never cut.
+        part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
     """
 
     title: str
     fingerprint: str
     not_good: str | None
     is_record: bool
+    part: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -57,6 +59,7 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
         *([] if words.not_good is None else [f"{NOT_GOOD}: {words.not_good}"]),
         f"discwright {ENGINE_VERSION}",
         f"title: {words.title}",
+        *([words.part] if words.part else []),
         f"movement: {movement.id} revision {movement.revision}",
         f"blank: {movement.disc.material}, {movement.disc.thickness_mm:g} mm thick",
         f"cutter: {cutter.id}",
@@ -70,20 +73,22 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
 
 
 def inscriptions(disc: Disc, words: Words) -> tuple[Inscription, ...]:
-    """The lines to engrave, the ones that must stay longest first: warnings, side, movement, fingerprint, title.
+    """The lines to engrave, the ones that must stay longest first: warnings, side, disc, movement and so on.
 
-    A title that is mostly lost in ASCII is left out; so is one of blanks.
+    Fingerprint and title come last. A title that is mostly lost in ASCII is left out; so is one of blanks.
     """
     movement, title = disc.movement, plain_ascii(words.title)
     warnings = (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
     lines = [Inscription(forms=(text,), row=row, is_warning=True) for row, text in enumerate(warnings)]
     below = len(warnings)
+    under_title = below + 1 + (words.part != "")
     lines += [
-        Inscription(forms=(_side(disc.cutter).upper(),), row=below + 2),
+        Inscription(forms=(_side(disc.cutter).upper(),), row=under_title + 1),
+        *([Inscription(forms=(words.part.upper(),), row=below + 1)] if words.part else []),
         Inscription(
-            forms=(_shortened(plain_ascii(f"{movement.id} rev {movement.revision}"), MOST_LETTERS[0]),), row=below + 1
+            forms=(_shortened(plain_ascii(f"{movement.id} rev {movement.revision}"), MOST_LETTERS[0]),), row=under_title
         ),
-        Inscription(forms=(words.fingerprint,), row=below + 3),
+        Inscription(forms=(words.fingerprint,), row=under_title + 2),
     ]
     if title and not is_mostly_lost(words.title):
         forms = dict.fromkeys(_shortened(title, most) for most in MOST_LETTERS)

@@ -25,6 +25,8 @@ class LaidOut:
         plucks: When they sound; pluck i is projection i.
         findings: What is wrong or near to wrong.
         report: What the disc keeps of the tune, and what that cost.
+        disc_number: Which disc of its set it is, from 1.
+        disc_count: How many discs the tune is cut into; 1 for one alone.
     """
 
     title: str
@@ -35,8 +37,15 @@ class LaidOut:
     plucks: Plucks
     findings: tuple[Finding, ...]
     report: Report
+    disc_number: int = 1
+    disc_count: int = 1
 
     @property
     def good_to_cut(self) -> bool:
         """Whether no error-level finding stands."""
         return not stands(self.findings)
+
+    @property
+    def part(self) -> str:
+        """Which disc of a set it is, in words such as "disc 2 of 3"; "" for one alone."""
+        return "" if self.disc_count == 1 else f"disc {self.disc_number} of {self.disc_count}"

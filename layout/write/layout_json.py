@@ -49,6 +49,7 @@ def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
         "format": FORMAT,
         "title": laid_out.title,
         "fingerprint": laid_out.fingerprint,
+        "disc": {"number": laid_out.disc_number, "of": laid_out.disc_count},
         "good_to_cut": laid_out.good_to_cut,
         "despite_findings": despite_findings,
         "movement": {"id": movement.id, "revision": movement.revision},

@@ -39,6 +39,7 @@ def report_record(laid_out: LaidOut) -> Record:
         "format": FORMAT,
         "title": laid_out.title,
         "fingerprint": laid_out.fingerprint,
+        "disc": {"number": laid_out.disc_number, "of": laid_out.disc_count},
         "good_to_cut": laid_out.good_to_cut,
         "movement": {"id": movement.id, "revision": movement.revision},
         "cutter": {"id": laid_out.disc.cutter.id},

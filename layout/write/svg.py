@@ -60,7 +60,8 @@ def write_svg(plan: CutPlan, laid_out: LaidOut) -> bytes:
 def _described(plan: CutPlan, laid_out: LaidOut) -> tuple[str, str]:
     disc = laid_out.disc
     counts = level_counts(laid_out)
-    title = f"{plan.title}: tune disc for {disc.movement.id}"
+    part = f", {plan.part}" if plan.part else ""
+    title = f"{plan.title}{part}: tune disc for {disc.movement.id}"
     description = [
         f"A round disc of {disc.movement.disc.outer_diameter_mm:g} mm with {disc.projection_count} projections "
         f"on {len(disc.movement.tracks)} tracks, drawn from the {plan.drawn_from.replace('-', ' ')}.",

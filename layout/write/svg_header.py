@@ -60,7 +60,8 @@ def header(plan: CutPlan, laid_out: LaidOut, page: Page, top_mm: float) -> Group
         down_mm = page.units_mm(5.6) + place * title.size_mm * _LINE_HEIGHT
         group.add(words(line, (left_mm, top_mm + down_mm), title))
     verdict_mm = top_mm + _head_height_mm(plan, page)
-    movement = shortened(laid_out.disc.movement.title, lead, room_mm)
+    part = f"{plan.part.capitalize()} for " if plan.part else ""
+    movement = shortened(f"{part}{laid_out.disc.movement.title}", lead, room_mm)
     group.add(words(movement, (left_mm, verdict_mm - page.units_mm(1.2)), lead))
     group.add(
         _good(laid_out, page, verdict_mm) if is_good(plan, laid_out) else _not_good(plan, laid_out, page, verdict_mm)

@@ -1,6 +1,7 @@
 """The desk where layouts are asked for: computed once, then kept for their links."""
 
 import logging
+import time
 
 from service.api.layout_cache import KeptLayout, LayoutCache
 from service.documents import Inputs
@@ -15,34 +16,33 @@ class LayoutDesk:
     def __init__(self, planner: AnyPlanner, cache: LayoutCache) -> None:
         self._planner = planner
         self._cache = cache
-        self._latest: Layout | None = None  # to mark the files of a layout just made without making it again
+        self._latest: tuple[Layout, ...] = ()  # to mark the files of layouts just made without making them again
 
     @property
     def program(self) -> str:
         """Names the program that makes the bytes: part of every entity tag."""
         return self._cache.program
 
-    def lay_out(self, inputs: Inputs) -> KeptLayout:
-        """The layout of these inputs, kept from now on.
+    def lay_out_discs(self, inputs: Inputs) -> tuple[KeptLayout, ...]:
+        """The layouts of these inputs, one for each disc, in order, kept from now on.
 
         Raises:
             LayoutError: The tune or a document cannot be used.
         """
         read = inputs.read()
-        fingerprint = self._planner.fingerprint_of(inputs.tune, read.movement, read.cutter, read.settings)
-        kept = self._cache.get(fingerprint)
-        if kept is not None and kept.inputs == inputs:
+        documents = (read.movement, read.cutter, read.settings)
+        fingerprints = [
+            self._planner.fingerprint_of(inputs.tune, *documents, number)
+            for number in range(1, read.settings.discs + 1)
+        ]
+        found = [self._cache.get(fingerprint) for fingerprint in fingerprints]
+        kept = tuple(layout for layout in found if layout is not None and layout.inputs == inputs)
+        if len(kept) == len(fingerprints):
             return kept
-        laid_out = self._compute(inputs)
-        kept = KeptLayout(
-            fingerprint=fingerprint,
-            title=laid_out.title,
-            good_to_cut=laid_out.good_to_cut,
-            inputs=inputs,
-            files=self._planner.files_of(laid_out),
-        )
-        self._cache.put(kept)
-        log.info("laid out %s", fingerprint)
+        kept = tuple(self._kept(laid_out, inputs) for laid_out in self._compute(inputs))
+        for layout in kept:
+            self._cache.put(layout)
+            log.info("laid out %s", layout.fingerprint)
         return kept
 
     def find(self, fingerprint: str) -> KeptLayout | None:
@@ -51,13 +51,24 @@ class LayoutDesk:
 
     def marked_files(self, kept: KeptLayout, reason: str) -> dict[str, bytes]:
         """All files of a layout that is not good to cut, marked so and with the reason why they are given."""
-        latest = self._latest
-        if latest is None or latest.fingerprint != kept.fingerprint:
-            latest = self._compute(kept.inputs)
-        return self._planner.files_of(latest, not_good=reason)
+        latest = {layout.fingerprint: layout for layout in self._latest}
+        if kept.fingerprint not in latest:
+            latest = {layout.fingerprint: layout for layout in self._compute(kept.inputs)}
+        return self._planner.files_of(latest[kept.fingerprint], not_good=reason)
 
-    def _compute(self, inputs: Inputs) -> Layout:
+    def _kept(self, laid_out: Layout, inputs: Inputs) -> KeptLayout:
+        return KeptLayout(
+            fingerprint=laid_out.fingerprint,
+            title=laid_out.title,
+            disc_number=laid_out.disc_number,
+            disc_count=laid_out.disc_count,
+            good_to_cut=laid_out.good_to_cut,
+            inputs=inputs,
+            files=self._planner.files_of(laid_out),
+        )
+
+    def _compute(self, inputs: Inputs) -> tuple[Layout, ...]:
         read = inputs.read()
-        laid_out: Layout = self._planner.lay_out(inputs.tune, read.movement, read.cutter, read.settings)
-        self._latest = laid_out
-        return laid_out
+        documents = (read.movement, read.cutter, read.settings)
+        self._latest = self._planner.lay_out_discs(inputs.tune, *documents, time.monotonic)
+        return self._latest

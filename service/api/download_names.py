@@ -11,6 +11,7 @@ LONGEST_TITLE = 40  # characters; leaves a whole name under the 255 bytes a file
 LONGEST_TITLE_BYTES = 60  # bytes in UTF-8, for the same reason
 LONGEST_MATERIAL = 40  # characters
 NOT_GOOD = "NOT-GOOD-TO-CUT"
+ALL_FILES = "all-files.zip"
 ENDINGS = {
     "disc.dxf": ".dxf",
     "record.dxf": "_record-not-for-cutting.dxf",
@@ -18,6 +19,7 @@ ENDINGS = {
     "hits.csv": "_hits.csv",
     "layout.json": "_layout.json",
     "report.json": "_report.json",
+    ALL_FILES: "_all-files.zip",
 }
 
 
@@ -31,6 +33,7 @@ class NamedDisc:
         cutter: The cutter, for the side the drawings show.
         fingerprint: The layout's.
         not_good: Whether its cutting files are given although an error-level finding stands.
+        part: Which disc of a set it is, such as "disc 2 of 3", or which discs; "" for one alone.
     """
 
     title: str
@@ -38,6 +41,7 @@ class NamedDisc:
     cutter: Cutter
     fingerprint: str
     not_good: bool
+    part: str = ""
 
 
 def download_name(disc: NamedDisc, file_name: str) -> str:
@@ -77,6 +81,7 @@ def _name(disc: NamedDisc, file_name: str, title: str) -> str:
     parts = (
         *([NOT_GOOD] if disc.not_good else []),
         title,
+        *([slug(disc.part, LONGEST_TITLE)] if disc.part else []),
         f"{disc.movement.id}-r{disc.movement.revision}",
         f"{material}-{blank.thickness_mm:g}mm",
         disc.cutter.drawn_from,

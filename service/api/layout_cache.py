@@ -39,6 +39,8 @@ class KeptLayout:
     Attributes:
         fingerprint: Its id.
         title: The tune's.
+        disc_number: Which disc of its set it is, from 1.
+        disc_count: How many discs the tune is cut into.
         good_to_cut: Whether no error-level finding stands.
         inputs: What it was made from.
         files: Its files by name; without the cutting files where they are kept back.
@@ -46,9 +48,16 @@ class KeptLayout:
 
     fingerprint: str
     title: str
+    disc_number: int
+    disc_count: int
     good_to_cut: bool
     inputs: Inputs
     files: Mapping[str, bytes]
+
+    @property
+    def part(self) -> str:
+        """Which disc of a set it is, such as "disc 2 of 3"; "" for one alone."""
+        return "" if self.disc_count == 1 else f"disc {self.disc_number} of {self.disc_count}"
 
 
 class LayoutCache:
@@ -165,6 +174,8 @@ def _packed(layout: KeptLayout) -> bytes:
     about = {
         "fingerprint": layout.fingerprint,
         "title": layout.title,
+        "disc_number": layout.disc_number,
+        "disc_count": layout.disc_count,
         "good_to_cut": layout.good_to_cut,
         "movement": inputs.movement.id if isinstance(inputs.movement, Shipped) else None,
         "cutter": inputs.cutter.id if isinstance(inputs.cutter, Shipped) else None,
@@ -192,6 +203,8 @@ def _unpacked(packed: bytes) -> KeptLayout:
     return KeptLayout(
         fingerprint=about["fingerprint"],
         title=about["title"],
+        disc_number=about["disc_number"],
+        disc_count=about["disc_count"],
         good_to_cut=about["good_to_cut"],
         inputs=Inputs(
             tune=members["tune.mid"],

@@ -1,16 +1,20 @@
-"""/v1/layouts: a tune becomes a layout; a layout gives its files."""
+"""/v1/layouts: a tune becomes a layout, or one for each disc it is cut into; a layout gives its files."""
 
 import hashlib
 import json
 import re
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from typing import Any
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
 from layout.walk import CUTTING_FILES, FILES
 from service.api.answers import JSON_MEDIA_TYPE, ONLY_OWN_STYLES, json_response
+from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.desk import LayoutDesk
-from service.api.download_names import NamedDisc, content_disposition
+from service.api.download_names import ALL_FILES, NamedDisc, content_disposition, download_name
 from service.api.layout_cache import KeptLayout
 from service.api.parameters import read_query
 from service.api.posted import read_posted
@@ -27,7 +31,14 @@ MEDIA_TYPES = {
     "report.json": JSON_MEDIA_TYPE,
 }
 # What a POST can answer with, by media type; the first where the client does not mind.
-ANSWERS: dict[str, str | None] = {JSON_MEDIA_TYPE: None, "image/svg+xml": "disc.svg", "image/vnd.dxf": "disc.dxf"}
+ANSWERS: dict[str, str | None] = {
+    JSON_MEDIA_TYPE: None,
+    "image/svg+xml": "disc.svg",
+    "image/vnd.dxf": "disc.dxf",
+    ZIP_MEDIA_TYPE: ALL_FILES,
+}
+# The same for several discs, of which no one drawing is the answer.
+ANSWERS_FOR_SEVERAL: dict[str, str | None] = {JSON_MEDIA_TYPE: None, ZIP_MEDIA_TYPE: ALL_FILES}
 
 
 def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
@@ -45,20 +56,15 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
 
     @routes.post("")
     def make_layout() -> Response:
-        file_name = _answer_wanted(request)
+        _answer_wanted(request, 1)  # what is acceptable in no case is refused before anything is read
         query = read_query(
             request.args,
             known=("movement", "cutter", "despite_findings"),
             most_reason_characters=limits.reason_characters,
         )
-        kept = desk.lay_out(read_posted(request, query, limits))
-        if file_name is None:
-            response = teller.layout(kept, query.reason)
-            response.status_code = 201
-            response.headers["Location"] = teller.address(kept, None, query.reason)
-        else:
-            response = teller.file(kept, file_name, query.reason)
-            response.headers["Content-Location"] = teller.address(kept, file_name, query.reason)
+        inputs = read_posted(request, query, limits)
+        file_name = _answer_wanted(request, inputs.read().settings.discs)
+        response = teller.made(desk.lay_out_discs(inputs), file_name, query.reason)
         response.vary.add("Accept")
         return response
 
@@ -97,20 +103,72 @@ class LayoutTeller:
         path = f"/v1/layouts/{kept.fingerprint}" + (f"/{file_name}" if file_name else "")
         return path if kept.good_to_cut or reason is None else f"{path}?{urlencode({'despite_findings': reason})}"
 
+    def made(self, discs: Sequence[KeptLayout], file_name: str | None, reason: str | None) -> Response:
+        """The answer to a POST: what was made, or one of its files.
+
+        Args:
+            discs: The layouts made, one or several.
+            file_name: The file it is answered with; None for the layouts in JSON.
+            reason: Why cutting files shall be given although an error-level finding stands, or None.
+
+        Raises:
+            ProblemError: A cutting file is part of the answer, an error-level finding stands, and no reason is given.
+        """
+        if file_name == ALL_FILES:
+            return self.all_files(discs, reason)
+        if file_name is not None:
+            response = self.file(discs[0], file_name, reason)
+            response.headers["Content-Location"] = self.address(discs[0], file_name, reason)
+            return response
+        if len(discs) == 1:
+            response = self.layout(discs[0], reason)
+            response.headers["Location"] = self.address(discs[0], None, reason)
+        else:
+            response = json_response({"discs": [self._told(kept, reason) for kept in discs]})
+            for kept in discs:  # each is a resource of its own: a list has several items (RFC 6573), no one location
+                response.headers.add("Link", f'<{self.address(kept, None, reason)}>; rel="item"')
+        response.status_code = 201
+        return response
+
+    def all_files(self, discs: Sequence[KeptLayout], reason: str | None) -> Response:
+        """Every file of these layouts in one archive, under the names they are saved by, in a folder for each disc.
+
+        Raises:
+            ProblemError: An error-level finding stands on a disc, and no reason is given.
+        """
+        packed: dict[str, bytes] = {}
+        for kept in discs:
+            if reason is None and not kept.good_to_cut:
+                raise _kept_back(kept, CUTTING_FILES[0])
+            named = _named(kept, not_good=not kept.good_to_cut)
+            for file_name, content in self._files(kept, reason).items():
+                packed[f"{kept.disc_number}/{download_name(named, file_name)}"] = content
+        response = Response(archive_of(packed), content_type=ZIP_MEDIA_TYPE)
+        first = _named(discs[0], not_good=not all(kept.good_to_cut for kept in discs))
+        together = replace(first, part=f"{len(discs)} discs" if len(discs) > 1 else "")
+        response.headers["Content-Disposition"] = content_disposition(together, ALL_FILES, how="attachment")
+        response.headers["Cache-Control"] = "no-cache"
+        return response
+
     def layout(self, kept: KeptLayout, reason: str | None) -> Response:
         """A layout in JSON, with links to the files that can be had; those kept back are left out."""
-        files = kept.files if reason is None or kept.good_to_cut else self._desk.marked_files(kept, reason)
-        response = json_response(
-            {
-                "fingerprint": kept.fingerprint,
-                "title": kept.title,
-                "good_to_cut": kept.good_to_cut,
-                "links": {name: self.address(kept, name, reason) for name in FILES if name in files},
-                "layout": json.loads(files["layout.json"]),
-            }
-        )
+        response = json_response(self._told(kept, reason))
         response.set_etag(self._tag(kept, "layout", reason))
         return response
+
+    def _told(self, kept: KeptLayout, reason: str | None) -> dict[str, Any]:
+        files = self._files(kept, reason)
+        return {
+            "fingerprint": kept.fingerprint,
+            "title": kept.title,
+            "disc": {"number": kept.disc_number, "of": kept.disc_count},
+            "good_to_cut": kept.good_to_cut,
+            "links": {name: self.address(kept, name, reason) for name in FILES if name in files},
+            "layout": json.loads(files["layout.json"]),
+        }
+
+    def _files(self, kept: KeptLayout, reason: str | None) -> Mapping[str, bytes]:
+        return kept.files if reason is None or kept.good_to_cut else self._desk.marked_files(kept, reason)
 
     def file(self, kept: KeptLayout, file_name: str, reason: str | None) -> Response:
         """One of a layout's files.
@@ -119,26 +177,14 @@ class LayoutTeller:
             ProblemError: It is a cutting file, and an error-level finding stands, and no reason is given.
         """
         marked = reason is not None and not kept.good_to_cut
-        if reason is not None and marked:
-            content = self._desk.marked_files(kept, reason)[file_name]
-        elif file_name in CUTTING_FILES and not kept.good_to_cut:
+        if file_name in CUTTING_FILES and not kept.good_to_cut and not marked:
             raise _kept_back(kept, file_name)
-        else:
-            content = kept.files[file_name]
-        response = Response(content, content_type=MEDIA_TYPES[file_name])
+        response = Response(self._files(kept, reason)[file_name], content_type=MEDIA_TYPES[file_name])
         is_picture = file_name == "disc.svg"
         if is_picture:
             response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
-        read = kept.inputs.read()
-        disc = NamedDisc(
-            title=kept.title,
-            movement=read.movement,
-            cutter=read.cutter,
-            fingerprint=kept.fingerprint,
-            not_good=marked,
-        )
         response.headers["Content-Disposition"] = content_disposition(
-            disc, file_name, how="inline" if is_picture else "attachment"
+            _named(kept, not_good=marked), file_name, how="inline" if is_picture else "attachment"
         )
         response.headers["Cache-Control"] = f"private, max-age={self._limits.file_max_age_s}, immutable"
         response.set_etag(self._tag(kept, file_name, reason))
@@ -149,18 +195,32 @@ class LayoutTeller:
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
 
 
-def _answer_wanted(asked: Request) -> str | None:
-    """The file that a POST shall be answered with; None for the layout in JSON."""
+def _named(kept: KeptLayout, *, not_good: bool) -> NamedDisc:
+    read = kept.inputs.read()
+    return NamedDisc(
+        title=kept.title,
+        movement=read.movement,
+        cutter=read.cutter,
+        fingerprint=kept.fingerprint,
+        not_good=not_good,
+        part=kept.part,
+    )
+
+
+def _answer_wanted(asked: Request, disc_count: int) -> str | None:
+    """The file that a POST for so many discs shall be answered with; None for the layouts in JSON."""
     if not asked.headers.get("Accept", "").strip():
         return None
-    best = asked.accept_mimetypes.best_match(ANSWERS)
+    answers = ANSWERS if disc_count == 1 else ANSWERS_FOR_SEVERAL
+    best = asked.accept_mimetypes.best_match(answers)
     if best is None:
+        why = "" if disc_count == 1 else f"; a drawing shows one disc of the {disc_count}, and the JSON links to each"
         raise ProblemError(
             name="not-acceptable",
-            detail=f"Accept is {asked.headers['Accept'][:200]!r}; the answer can be {', '.join(ANSWERS)}",
-            more={"allowed_types": list(ANSWERS)},
+            detail=f"Accept is {asked.headers['Accept'][:200]!r}; the answer can be {', '.join(answers)}{why}",
+            more={"allowed_types": list(answers)},
         )
-    return ANSWERS[best]
+    return answers[best]
 
 
 def _found(desk: LayoutDesk, fingerprint: str) -> KeptLayout:

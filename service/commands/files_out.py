@@ -1,4 +1,4 @@
-"""A folder that gets the files of a layout, each whole or not at all."""
+"""Folders that get the files of layouts, each whole or not at all."""
 
 import contextlib
 import os
@@ -11,44 +11,74 @@ from layout.walk import CUTTING_FILES
 from service.commands.errors import CommandError
 
 
-def write_files(folder: Path, files: Mapping[str, bytes]) -> tuple[str, ...]:
-    """Write the files of a layout into a folder, made where it does not exist; files of other names stay.
+def write_folders(folders: Mapping[Path, Mapping[str, bytes]]) -> dict[Path, tuple[str, ...]]:
+    """Write the files of layouts that belong together, each into its folder; files of other names stay.
 
-    Everything is written in a folder inside first, on the same disk, then renamed. Cutting files of an
-    earlier layout go first and new ones come last: whenever it is interrupted, no cutting file stands
-    beside files of another layout.
+    Folders are made where they do not exist. Everything is written in a folder inside each first, on the
+    same disk, then renamed. Cutting files of earlier layouts go first and new ones come last: whenever it is
+    interrupted, no cutting file stands beside files of another layout, nor beside another set's.
 
     Args:
-        folder: Where to.
-        files: By name.
+        folders: The files by name, by their folder. A folder without files is not made, and only its cutting
+            files are removed.
 
     Returns:
-        The cutting files of an earlier layout that were removed and not replaced.
+        By folder, the cutting files of an earlier layout that were removed and not replaced.
 
     Raises:
-        CommandError: Something cannot be written; says what. A folder made for it is removed again.
+        CommandError: Something cannot be written; says what. Folders made for it are removed again.
     """
-    made = _make(folder)
-    ready = None
+    made: list[Path] = []
+    ready: dict[Path, Path] = {}
     try:
-        for name in {*files, *CUTTING_FILES}:
-            if (folder / name).is_dir():
-                raise CommandError(f"{str(folder / name)!r} is a folder; remove it or choose another --out")
-        ready = Path(tempfile.mkdtemp(prefix=".discwright-", dir=folder))
-        for name, content in files.items():
-            (ready / name).write_bytes(content)
-        stale = [name for name in CUTTING_FILES if (folder / name).exists()]
-        for name in stale:
-            (folder / name).unlink()
-        for name in sorted(files, key=lambda name: name in CUTTING_FILES):
-            os.replace(ready / name, folder / name)
+        for folder, files in folders.items():
+            _check_free(folder, files)
+            made += _make(folder) if files else []
+        for folder, files in folders.items():
+            if files:
+                ready[folder] = _written_inside(folder, files)
+        stale = {folder: _without_cutting_files(folder) for folder in folders}
+        for cutting in (False, True):
+            for folder, inside in ready.items():
+                _move_out(inside, folder, [name for name in folders[folder] if (name in CUTTING_FILES) == cutting])
     except OSError as refusal:
-        raise CommandError(f"cannot write to {str(folder)!r}: {refusal.strerror or refusal}") from refusal
+        where = ", ".join(repr(str(folder)) for folder in folders)
+        raise CommandError(f"cannot write to {where}: {refusal.strerror or refusal}") from refusal
     finally:
-        if ready is not None:
-            shutil.rmtree(ready, ignore_errors=True)
+        for inside in ready.values():
+            shutil.rmtree(inside, ignore_errors=True)
         _remove_empty(made)
-    return tuple(name for name in stale if name not in files)
+    return {folder: tuple(name for name in stale[folder] if name not in files) for folder, files in folders.items()}
+
+
+def _check_free(folder: Path, files: Mapping[str, bytes]) -> None:
+    for name in sorted({*files, *CUTTING_FILES}):
+        if (folder / name).is_dir():
+            raise CommandError(f"{str(folder / name)!r} is a folder; remove it or choose another --out")
+
+
+def _written_inside(folder: Path, files: Mapping[str, bytes]) -> Path:
+    """The files in a new folder inside this one; gone again where it cannot be."""
+    inside = Path(tempfile.mkdtemp(prefix=".discwright-", dir=folder))
+    try:
+        for name, content in files.items():
+            (inside / name).write_bytes(content)
+    except BaseException:
+        shutil.rmtree(inside, ignore_errors=True)
+        raise
+    return inside
+
+
+def _without_cutting_files(folder: Path) -> list[str]:
+    stale = [name for name in CUTTING_FILES if (folder / name).exists()]
+    for name in stale:
+        (folder / name).unlink()
+    return stale
+
+
+def _move_out(inside: Path, folder: Path, names: list[str]) -> None:
+    for name in names:
+        os.replace(inside / name, folder / name)
 
 
 def _make(folder: Path) -> list[Path]:

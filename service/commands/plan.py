@@ -2,15 +2,18 @@
 
 import argparse
 import json
+import time
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from layout.documents import Cutter, Movement
 from layout.walk import CUTTING_FILES, FILES
 from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter, folder
+from service.commands.disc_folders import disc_folders, earlier_folders
 from service.commands.errors import ERROR_STANDS, GOOD, CommandError
 from service.commands.files_in import read_file, read_named_cutter, read_named_movement, read_named_settings
-from service.commands.files_out import write_files
+from service.commands.files_out import write_folders
 from service.commands.findings import finding_lines
 from service.commands.output import say, say_json
 from service.commands.report_lines import kept_lines, report_lines
@@ -19,7 +22,8 @@ from service.reason import ReasonError, checked_reason
 ABOUT = (
     "Make the files of a disc from a MIDI file. They are disc.dxf and hits.csv (to cut), record.dxf (to read, "
     "never to cut), disc.svg (to look at), layout.json (for programs) and report.json (what is kept, and what that "
-    "cost; told here in short). Ends with 0 where the disc is good to "
+    "cost; told here in short). Settings that ask for several discs give each a folder of its own, DIR/1, DIR/2 and "
+    "so on. Ends with 0 where every disc is good to "
     "cut, with 3 where an error-level finding stands (disc.dxf and hits.csv are then kept back), with 2 where the "
     "input cannot be used (nothing is written)."
 )
@@ -56,29 +60,80 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     movement = read_named_movement(asked.movement, tools.limits)
     cutter = read_named_cutter(asked.cutter, tools.limits)
     settings = read_named_settings(asked.settings, tools.limits)
-    laid_out = tools.planner.lay_out(tune, movement, cutter, settings)
-    files = tools.planner.files_of(laid_out, not_good=reason)
-    removed = write_files(asked.out, files)
-    layout, report = json.loads(files["layout.json"]), json.loads(files["report.json"])
-    kept_back = [name for name in FILES if name not in files]
+    discs = tools.planner.lay_out_discs(tune, movement, cutter, settings, time.monotonic)
+    written = _write(asked.out, [tools.planner.files_of(disc, not_good=reason) for disc in discs])
     if asked.json:
-        paths = {name: str(asked.out / name) for name in files}
-        say_json(
-            {
-                "good_to_cut": laid_out.good_to_cut,
-                "files": paths,
-                "kept_back": kept_back,
-                "removed": list(removed),
-                "layout": layout,
-                "report": report,
-            }
-        )
+        say_json(_told(written))
     else:
-        say([laid_out.title, *layout_lines(layout, report, movement, cutter), *report_lines(report)])
-        say(finding_lines(layout["findings"]))
-        say(["good to cut" if laid_out.good_to_cut else "NOT GOOD TO CUT"])
-        say(_file_lines(asked.out, files, removed))
-    return GOOD if laid_out.good_to_cut else ERROR_STANDS
+        for made, laid_out in zip(written.discs, discs, strict=True):
+            part = "" if len(discs) == 1 else f", disc {laid_out.disc_number} of {laid_out.disc_count}"
+            say([f"{laid_out.title}{part}", *layout_lines(made.layout, made.report, movement, cutter)])
+            say([*report_lines(made.report), *finding_lines(made.layout["findings"])])
+            say(["good to cut" if made.layout["good_to_cut"] else "NOT GOOD TO CUT", *_file_lines(made)])
+        if written.removed:
+            say([f"removed from {asked.out}, as they were of earlier discs: {', '.join(written.removed)}"])
+    return GOOD if all(disc.good_to_cut for disc in discs) else ERROR_STANDS
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Made:
+    """The files of one disc, in their folder; removed: cutting files of an earlier disc that are gone."""
+
+    folder: Path
+    files: dict[str, bytes]
+    removed: tuple[str, ...]
+
+    @property
+    def layout(self) -> dict[str, Any]:
+        """Content of layout.json."""
+        layout: dict[str, Any] = json.loads(self.files["layout.json"])
+        return layout
+
+    @property
+    def report(self) -> dict[str, Any]:
+        """Content of report.json."""
+        report: dict[str, Any] = json.loads(self.files["report.json"])
+        return report
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Written:
+    """The discs written; removed: cutting files, by their path in the folder asked for, that no disc here replaces."""
+
+    discs: tuple[_Made, ...]
+    removed: tuple[str, ...]
+
+
+def _write(out: Path, files_of_discs: list[dict[str, bytes]]) -> _Written:
+    folders = dict(zip(disc_folders(out, len(files_of_discs)), files_of_discs, strict=True))
+    earlier = earlier_folders(out, len(files_of_discs))
+    removed = write_folders(folders | {folder: {} for folder in earlier})
+    return _Written(
+        discs=tuple(_Made(folder=folder, files=files, removed=removed[folder]) for folder, files in folders.items()),
+        removed=tuple(str((folder / name).relative_to(out)) for folder in earlier for name in removed[folder]),
+    )
+
+
+def _told(written: _Written) -> dict[str, Any]:
+    """What was made, for programs: of one disc its own, of several a list."""
+    discs = [
+        {
+            "good_to_cut": made.layout["good_to_cut"],
+            "files": {name: str(made.folder / name) for name in made.files},
+            "kept_back": [name for name in FILES if name not in made.files],
+            "removed": list(made.removed),
+            "layout": made.layout,
+            "report": made.report,
+        }
+        for made in written.discs
+    ]
+    if len(discs) == 1:
+        return discs[0] | {"removed": [*written.discs[0].removed, *written.removed]}
+    return {
+        "good_to_cut": all(disc["good_to_cut"] for disc in discs),
+        "discs": discs,
+        "removed": list(written.removed),
+    }
 
 
 def _reason(text: str | None, tools: Tools) -> str | None:
@@ -109,10 +164,10 @@ def layout_lines(layout: dict[str, Any], report: dict[str, Any], movement: Movem
     ]
 
 
-def _file_lines(folder: Path, files: dict[str, bytes], removed: tuple[str, ...]) -> list[str]:
-    lines = [f"written to {folder}: {', '.join(files)}"]
-    if CUTTING_FILES[0] not in files:
+def _file_lines(made: _Made) -> list[str]:
+    lines = [f"written to {made.folder}: {', '.join(made.files)}"]
+    if CUTTING_FILES[0] not in made.files:
         lines.append(f"kept back: {', '.join(CUTTING_FILES)}; --despite-findings REASON gives them, marked")
-    if removed:
-        lines.append(f"removed from {folder}, as they were of an earlier disc: {', '.join(removed)}")
+    if made.removed:
+        lines.append(f"removed from {made.folder}, as they were of an earlier disc: {', '.join(made.removed)}")
     return lines

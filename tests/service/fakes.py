@@ -98,6 +98,8 @@ class FakeLayout:
     fingerprint: str
     record: dict[str, Any]
     good_to_cut: bool
+    disc_number: int = 1
+    disc_count: int = 1
     score: None = None
 
 
@@ -134,19 +136,31 @@ class FakePlanner:
     """Lays out anything that begins as a MIDI file does; remembers how often it was asked to."""
 
     findings: tuple[Finding, ...] = ()
+    faulty_disc: int | None = None  # the disc of a set that has the findings; None: every one
     title: str = "Harvest Dance"
     laid_out_count: int = 0
 
-    def fingerprint_of(self, tune: bytes, movement: Any, cutter: Any, settings: Any) -> str:
-        seen = repr((tune, movement.id, cutter.id, settings))
+    def fingerprint_of(self, tune: bytes, movement: Any, cutter: Any, settings: Any, number: int = 1) -> str:
+        seen = repr((tune, movement.id, cutter.id, settings, number))
         return f"{sum((place + 1) * ord(letter) for place, letter in enumerate(seen)):016x}"
 
-    def lay_out(self, tune: bytes, movement: Any, cutter: Any, settings: Any) -> FakeLayout:
+    def lay_out_discs(
+        self, tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None
+    ) -> tuple[FakeLayout, ...]:
         self.laid_out_count += 1
+        assert clock is None or clock() <= clock()
         if not tune.startswith(b"MThd"):
             raise MidiReadError(byte_offset=0, found="'not '", expected="the header chunk", remedy="export it again")
-        good = all(finding.level is not Level.ERROR for finding in self.findings)
+        return tuple(
+            self._laid_out(tune, movement, cutter, settings, number) for number in range(1, settings.discs + 1)
+        )
+
+    def _laid_out(self, tune: bytes, movement: Any, cutter: Any, settings: Any, number: int) -> FakeLayout:
+        findings = self.findings if self.faulty_disc in {None, number} else ()
+        good = all(finding.level is not Level.ERROR for finding in findings)
         record = {
+            "good_to_cut": good,
+            "disc": {"number": number, "of": settings.discs},
             "movement": {"id": movement.id, "revision": movement.revision},
             "cutter": {"id": cutter.id},
             "drawn_from": cutter.drawn_from,
@@ -157,19 +171,20 @@ class FakePlanner:
             "projections": [{"notes": [0, 2]}, {"notes": [3]}],
             "left_out": [{"note": 1, "reason": "no-such-pitch"}],
             "findings": [
-                {"code": f.code, "level": f.level, "message": f.message, "remedy": f.remedy} for f in self.findings
+                {"code": f.code, "level": f.level, "message": f.message, "remedy": f.remedy} for f in findings
             ],
         }
-        return FakeLayout(
-            settings.title or self.title, self.fingerprint_of(tune, movement, cutter, settings), record, good
-        )
+        fingerprint = self.fingerprint_of(tune, movement, cutter, settings, number)
+        title = settings.title or self.title
+        return FakeLayout(title, fingerprint, record, good, disc_number=number, disc_count=settings.discs)
 
     def files_of(self, laid_out: FakeLayout, *, not_good: str | None = None) -> dict[str, bytes]:
         mark = "" if laid_out.good_to_cut or not_good is None else f" NOT GOOD TO CUT: {not_good}"
         names = ["disc.dxf", "record.dxf", "disc.svg", "hits.csv"]
         if not laid_out.good_to_cut and not_good is None:
             names = ["record.dxf", "disc.svg"]
-        files = {name: f"{name} of {laid_out.title}{mark}".encode() for name in names}
+        part = "" if laid_out.disc_count == 1 else f" {laid_out.disc_number}/{laid_out.disc_count}"
+        files = {name: f"{name} of {laid_out.title}{part}{mark}".encode() for name in names}
         record = laid_out.record | {"despite_findings": not_good if mark else None}
         return {**files, "layout.json": json.dumps(record).encode(), "report.json": json.dumps(REPORT).encode()}
 

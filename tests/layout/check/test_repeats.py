@@ -2,11 +2,12 @@ import math
 
 import pytest
 
-from layout.arrange.arrangement import LeftOut
+from layout.arrange.arrangement import Arrangement, LeftOut
 from layout.check import Code, Level, check
-from layout.check.music import music_fits_the_turn, something_plays
+from layout.check.music import WholeTune, music_fits_the_turn, something_plays
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
 from layout.documents import Movement
+from layout.mechanics.arrays import frozen_floats
 from tests.layout.examples import PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
 
 # On track 1 of the plain movement, radius 50 at 60 s a turn, the edge travels 2 pi 50 / 60 = 5.235988 mm/s,
@@ -175,7 +176,7 @@ def test_music_longer_than_the_turn_is_an_error_with_its_length() -> None:
     assert finding.limit == pytest.approx(50.0)
     assert "one turn of plain-3 has 50.00 s for it, so 1 note falls past the turn." in finding.message
     # 49.0 s is the last onset the test's arrangement has; its turn has 50 s
-    assert "it fits the turn at 0.980 times as written (settings: passage, speed)" in finding.remedy
+    assert "it fits the turn at 0.980 times as written" in finding.remedy
 
 
 @pytest.mark.parametrize("length_s", [50.001, 58.7501, 77.7777])
@@ -187,6 +188,56 @@ def test_the_factor_named_makes_the_music_fit(length_s: float) -> None:
     named = float(finding.remedy.partition("fits the turn at ")[2].partition(" times")[0])
     assert length_s / named <= 50.0
     assert length_s / (named - 0.001) > 50.0
+
+
+def too_long(length_s: float) -> Arrangement:
+    return arrangement_of([(1, length_s)], (LeftOut(note=1, reason="past-the-turn"),))
+
+
+def whole_tune(onset_s: list[float], disc_count: int = 1) -> WholeTune:
+    return WholeTune(onset_s=frozen_floats(onset_s), from_s=onset_s[0], disc_count=disc_count)
+
+
+@pytest.mark.parametrize(
+    ("onset_s", "discs", "fits"),
+    [
+        # turns of 50 s
+        ([0.0, 50.0, 50.5], "over 2 discs (settings: discs)", "the turn at 1.010 times"),  # 50.5/50
+        ([0.0, 60.0, 120.0, 180.0], "over 4 discs (settings: discs)", "the turn at 3.600 times"),  # 180/50
+        ([0.0, 10.0, 110.0, 120.0], "over 2 discs (settings: discs)", "the turn at 2.400 times"),  # silence between
+    ],
+)
+def test_a_tune_too_long_names_the_fewest_discs_that_hold_it(onset_s: list[float], discs: str, fits: str) -> None:
+    [finding] = music_fits_the_turn(too_long(onset_s[-1]), disc_of(PLAIN, [(1, 0.0)]), whole_tune(onset_s))
+
+    assert finding.remedy.startswith(f"Cut the tune {discs}, or choose a passage of it (passage), or let it play")
+    assert fits in finding.remedy
+    assert 'speed: mode "fit", with most at' in finding.remedy
+
+
+def test_discs_too_few_name_how_many_it_takes_and_the_speed_for_as_many_as_there_are() -> None:
+    whole = whole_tune([0.0, 40.0, 80.0, 120.0, 180.0], disc_count=2)
+
+    [finding] = music_fits_the_turn(too_long(100.0), disc_of(PLAIN, [(1, 0.0)]), whole)
+
+    # 0 and 40 s, 80 and 120 s, 180 s; two turns hold 0 to 80 s and 120 to 180 s: 80/50
+    assert "Cut the tune over 3 discs instead of 2 (settings: discs)" in finding.remedy
+    assert "it fits 2 turns at 1.600 times as written" in finding.remedy
+
+
+def test_a_tune_for_more_discs_than_there_can_be_says_so() -> None:
+    whole = whole_tune([float(60 * place) for place in range(25)])
+
+    [finding] = music_fits_the_turn(too_long(1440.0), disc_of(PLAIN, [(1, 0.0)]), whole)
+
+    assert finding.remedy.startswith("It would take 25 discs, more than the 24 there can be; choose a passage of it")
+
+
+def test_a_tune_of_which_only_the_length_is_known_names_discs_that_surely_hold_it() -> None:
+    [finding] = music_fits_the_turn(too_long(100.5), disc_of(PLAIN, [(1, 0.0)]))
+
+    # 100.5/50 = 2.01
+    assert "over 3 discs" in finding.remedy
 
 
 def test_music_that_fits_passes() -> None:

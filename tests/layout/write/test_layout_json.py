@@ -26,7 +26,17 @@ from tests.layout.write.examples import (
 )
 
 PROMISED = [
-    *("format", "title", "fingerprint", "good_to_cut", "despite_findings", "movement", "cutter", "engine_version"),
+    *(
+        "format",
+        "title",
+        "fingerprint",
+        "disc",
+        "good_to_cut",
+        "despite_findings",
+        "movement",
+        "cutter",
+        "engine_version",
+    ),
     *("read", "revolution_s", "turns", "drawn_from", "transposed_semitones", "speed_factor", "from_s", "worth"),
     *("bars", "notes", "projections", "left_out", "findings"),
 ]

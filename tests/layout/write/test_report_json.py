@@ -22,7 +22,7 @@ from tests.layout.write.examples import (
 )
 
 FIELDS = [
-    *("format", "title", "fingerprint", "good_to_cut", "movement", "cutter", "engine_version"),
+    *("format", "title", "fingerprint", "disc", "good_to_cut", "movement", "cutter", "engine_version"),
     *("transposed_semitones", "speed_factor", "from_s", "worth", "projection_count", "extra_pluck_count"),
     *("total", "highest", "lowest", "inner", "melody", "not_asked", "worst_bars", "tried"),
     *("load", "no_load_because", "tracks"),

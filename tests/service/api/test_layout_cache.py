@@ -27,6 +27,8 @@ def layout(number: int, *, size_bytes: int = 10, movement: Source | None = None)
     return KeptLayout(
         fingerprint=f"{number:016x}",
         title="Dünung",
+        disc_number=2,
+        disc_count=3,
         good_to_cut=True,
         inputs=inputs,
         files={"disc.dxf": os.urandom(size_bytes)},
@@ -146,7 +148,8 @@ inputs = Inputs(tune=b"MThd", movement=Shipped(id="x"), cutter=Shipped(id="x"), 
 for turn in range(150):
     fingerprint = f"{(first + turn) % 8:016x}"
     files = {"disc.dxf": os.urandom(50_000)}
-    cache.put(KeptLayout(fingerprint=fingerprint, title="t", good_to_cut=True, inputs=inputs, files=files))
+    told = {"fingerprint": fingerprint, "title": "t", "disc_number": 1, "disc_count": 1, "good_to_cut": True}
+    cache.put(KeptLayout(**told, inputs=inputs, files=files))
     seen = cache.get(f"{(first + 2 * turn) % 8:016x}")
     assert seen is None or len(seen.files["disc.dxf"]) == 50_000
 """

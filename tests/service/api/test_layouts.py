@@ -20,7 +20,7 @@ def test_a_tune_as_the_raw_body_becomes_a_layout(client: Client, media_type: str
 
     assert answer.status_code == 201
     assert answer.content_type == "application/json"
-    assert set(answer.json) == {"fingerprint", "title", "good_to_cut", "links", "layout"}
+    assert set(answer.json) == {"fingerprint", "title", "disc", "good_to_cut", "links", "layout"}
     assert answer.json["good_to_cut"] is True
     assert answer.json["layout"]["movement"] == {"id": "fernhollow-31", "revision": 1}
     assert answer.headers["Location"] == f"/v1/layouts/{answer.json['fingerprint']}"
