@@ -7,6 +7,8 @@ import socket
 import subprocess
 import sys
 import time
+import zipfile
+from collections import Counter
 from collections.abc import Iterator
 from pathlib import Path
 from typing import get_args
@@ -24,7 +26,7 @@ TOP = Path(__file__).parent.parent
 README = (TOP / "README.md").read_text()
 BLOCKS = re.findall(r"```sh\n(.*?)```", README, flags=re.DOTALL)
 CURL = [command for block in BLOCKS for command in re.findall(r"^curl .*?[^\\]$", block, re.DOTALL | re.MULTILINE)]
-COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith("discwright ")]
+COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith(("discwright ", "printf "))]
 
 
 @pytest.fixture(scope="module")
@@ -73,6 +75,9 @@ def test_a_curl_line_of_the_readme_works(command: str, address: str, tmp_path: P
         assert json.loads(result.stdout)
     elif told[1].endswith(".dxf"):
         assert len(ezdxf.readfile(tmp_path / told[1]).modelspace().query("LWPOLYLINE[layer=='SLITS']")) > 300
+    elif told[1].endswith(".zip"):
+        with zipfile.ZipFile(tmp_path / told[1]) as archive:
+            assert Counter(name.partition("/")[0] for name in archive.namelist()) == {"1": 6, "2": 6}
     elif told[1].endswith(".svg"):
         assert "<svg" in (tmp_path / told[1]).read_text()
     else:
@@ -83,18 +88,21 @@ def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> 
     program = f"{sys.executable} -m service.commands.main"
 
     for command in COMMANDS:
-        line = f"PYTHONPATH='{TOP}' {program} {command.removeprefix('discwright ')}"
+        ours = command.startswith("discwright ")
+        line = f"PYTHONPATH='{TOP}' {program} {command.removeprefix('discwright ')}" if ours else command
         result = run(line, tmp_path)
 
         assert result.returncode == 0, f"{command}: {result.stderr}"
-        assert result.stdout
+        assert bool(result.stdout) == ours
 
+    for disc in ("1", "2"):
+        assert {path.name for path in (tmp_path / "demo/two-discs" / disc).iterdir()} == set(walk.FILES)
     assert {path.name for path in (tmp_path / "demo/by-hand").iterdir()} == set(walk.FILES)
 
 
 def test_the_readme_has_examples_to_run() -> None:
-    assert len(CURL) == 7
-    assert len(COMMANDS) == 6
+    assert len(CURL) == 8
+    assert len(COMMANDS) == 9
 
 
 def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:

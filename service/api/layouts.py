@@ -237,8 +237,9 @@ def _found(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
 def _kept_back(kept: KeptLayout, file_name: str) -> ProblemError:
     findings = json.loads(kept.files["layout.json"])["findings"]
     errors = [finding for finding in findings if finding["level"] == "error"]
+    of_set = f"{kept.part}: " if kept.part else ""
     return ProblemError(
         name="not-good-to-cut",
-        detail=f"{file_name} is kept back: {len(errors)} error(s), the first: {errors[0]['message']}",
+        detail=f"{of_set}{file_name} is kept back: {len(errors)} error(s), the first: {errors[0]['message']}",
         more={"fingerprint": kept.fingerprint, "findings": findings},
     )

@@ -266,6 +266,20 @@ def test_comments_say_what_the_drawing_is() -> None:
     assert plan.record.comments == ("RECORD - NOT FOR CUTTING", *plan.disc.comments)
 
 
+def test_a_disc_of_a_set_says_which_it_is_under_its_title_and_in_the_head() -> None:
+    disc = disc_of(PLAIN, [(1, 1.0)])
+
+    plan = plan_cuts(disc, title="The Long Meadow", fingerprint=FINGERPRINT, not_good=None, part="disc 2 of 3")
+    alone = plan_cuts(disc, title="The Long Meadow", fingerprint=FINGERPRINT, not_good=None)
+
+    lines = ["The Long Meadow", "DISC 2 OF 3", "plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    assert sorted(texts(plan.disc)) == sorted(lines)
+    assert texts(alone.disc) == [line for line in lines if line != "DISC 2 OF 3"]
+    assert plan.disc.comments[1:3] == ("title: The Long Meadow", "disc 2 of 3")
+    assert plan.record.comments[2:4] == ("title: The Long Meadow", "disc 2 of 3")
+    assert plan.part == "disc 2 of 3"
+
+
 def test_comments_warn_first_and_stay_short_plain_single_lines() -> None:
     plan = plan_of(disc_of(PLAIN, []), not_good="pièce d'essai\r\n0\nEOF\n" + "x" * 500)
 
