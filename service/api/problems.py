@@ -97,8 +97,8 @@ _KINDS = (
         name="not-acceptable",
         status=406,
         title="The answer cannot be given in a form the request accepts",
-        what_to_do="Ask for one of allowed_types in the header Accept, or leave the header out. Several discs come as JSON "
-        "with links to the files of each, or as an archive of them all.",
+        what_to_do="Ask for one of allowed_types in the header Accept, or leave the header out. Several discs come as "
+        "JSON with links to the files of each, or as an archive of them all.",
     ),
     ProblemKind(
         name="upload-too-large",

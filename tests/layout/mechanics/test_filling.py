@@ -7,8 +7,9 @@ from hypothesis import strategies as st
 
 from layout.mechanics.filling import Filled, least_turn_s, turns_filled
 
-ONSETS = st.lists(st.integers(0, 30), min_size=1, max_size=8, unique=True).map(
-    lambda eighths: sorted(e / 8 for e in eighths)
+# 1024ths of a second, so that sums are exact; fine enough that a search which skips a hundredth misses some
+ONSETS = st.lists(st.integers(0, 400), min_size=1, max_size=8, unique=True).map(
+    lambda ticks: sorted(tick / 1024 for tick in ticks)
 )
 
 
