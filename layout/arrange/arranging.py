@@ -15,7 +15,6 @@ from layout.arrange.refusals import Refused, refusal
 from layout.arrange.rulings import Rulings, check_in_time, read_rulings
 from layout.arrange.searching import NoWay, Way, search
 from layout.arrange.splitting import fitting_factor
-from layout.arrange.spreading import with_spread_chords
 from layout.documents.movement import Movement
 from layout.documents.settings import Settings
 from layout.errors import RulingError
@@ -142,10 +141,7 @@ def _ways(settings: Settings, factors: Iterable[float]) -> list[Way]:
 
 
 def _posed(asked: Sequence[Asked], way: Way, rules: Rules) -> list[Problem]:
-    return [
-        with_spread_chords(pose(one.wanted, way.semitones, rules), int(one.wanted.nudge_ns.max(initial=0)))
-        for one in asked
-    ]
+    return [pose(one.wanted, way.semitones, rules) for one in asked]
 
 
 def _refusal(

@@ -3,22 +3,35 @@
 from collections.abc import Callable
 from typing import Literal
 
-MOST_NODES = 20_000  # nodes of search trees, over everything searched for one disc
+# Over everything searched for one tune. A real piece takes tens of thousands of states and a few nodes; these
+# let the worst go on for some tens of seconds.
+MOST_NODES = 20_000  # nodes of the search trees of integer programs
+MOST_STATES = 2_000_000  # states of dynamic programs
 
 
 class Budget:
-    """Nodes and seconds left; one for a whole search, spent as it goes."""
+    """Nodes, states and seconds left; one for a whole search, spent as it goes."""
 
     def __init__(
-        self, *, nodes: int = MOST_NODES, time_limit_s: float | None = None, clock: Callable[[], float] | None = None
+        self,
+        *,
+        nodes: int = MOST_NODES,
+        states: int = MOST_STATES,
+        time_limit_s: float | None = None,
+        clock: Callable[[], float] | None = None,
     ) -> None:
         self.nodes_left = nodes
+        self.states_left = states
         self._clock = clock
         self._ends_s = None if time_limit_s is None or clock is None else clock() + time_limit_s
 
     def spend(self, nodes: int) -> None:
         """Take nodes off."""
         self.nodes_left = max(self.nodes_left - nodes, 0)
+
+    def spend_states(self, states: int) -> None:
+        """Take states off."""
+        self.states_left = max(self.states_left - states, 0)
 
     def seconds_left(self) -> float | None:
         """Seconds until the time limit, not below 0; None without one."""
@@ -31,7 +44,7 @@ class Budget:
         """What has run out, if anything; time first, since such an answer is not the same again."""
         if self.seconds_left() == 0.0:
             return "time"
-        return "nodes" if self.nodes_left == 0 else None
+        return "nodes" if self.nodes_left == 0 or self.states_left == 0 else None
 
     @property
     def spent(self) -> bool:

@@ -6,7 +6,7 @@ its track allow, which leaves the most room for what follows, so the moments nee
 own. Extra plucks add to the state whether the pluck they belong to sounds, a cost of ringing teeth
 when each track last sounded. Webs, loads and the end of the turn are not looked at.
 
-Exact where `MOST_STATES` suffice. How many states there are is what the part's crowding makes them:
+Exact where `MOST_AT_ONCE` states suffice. How many states there are is what the part's crowding makes them:
 one where nothing is in the way, tens on doubled teeth in a run.
 """
 
@@ -17,10 +17,12 @@ from typing import NamedTuple
 
 import numpy as np
 
+from layout.arrange.budget import Budget
 from layout.arrange.steps import LONG_AGO, Step, Steps, Way
 from layout.mechanics.arrays import IntArray
 
-MOST_STATES = 2_000  # states after one pluck; beyond, the integer program is the quicker way
+MOST_AT_ONCE = 2_000  # states after one pluck; beyond, the integer program is the quicker way
+NARROW = 40  # states after one pluck, where a part is too crowded to be followed in all of them
 FREE = 0  # free before anything to come; no moment is earlier
 _FEW = 12  # states; so many are compared one by one, more as an array
 
@@ -45,27 +47,35 @@ class Stuck(NamedTuple):
 
 
 class TooCrowded(NamedTuple):
-    """The part has more than MOST_STATES states at this pluck."""
+    """The part has more than MOST_AT_ONCE states, or more than the budget had left.
 
-    pluck: int
+    Attributes:
+        narrowed: A choice all the same, good and not proved; None where none was found that plays what must sound.
+        bound: No choice is worth more.
+    """
+
+    narrowed: Best | None
+    bound: int
 
 
 _Key = tuple[tuple[int, ...], int, tuple[int, ...]]  # free from, which plucks sound, last sounded
 _Chain = tuple["_Chain", int] | None  # the spots chosen, last first
 _Kept = tuple[int, _Chain]
+_States = dict[_Key, _Kept]
 
 
-def best_by_time(steps: Steps, plucks: IntArray) -> Best | Stuck | TooCrowded:
+def best_by_time(steps: Steps, plucks: IntArray, budget: Budget) -> Best | Stuck | TooCrowded:
     """The best choice of a part's plucks.
 
     Args:
         steps: Of the problem.
         plucks: One part, rising; none give a choice of none.
+        budget: The states looked at are taken off.
     """
     part = steps.of(plucks)
-    best = _best(part)
+    best = _best(part, budget)
     if isinstance(best, Best) and _nudges([steps.ways[spot] for spot in best.spots]):
-        asked = _best([step.as_asked() for step in part])
+        asked = _best([step.as_asked() for step in part], budget)
         # As good without a nudge is better.
         return asked if isinstance(asked, Best) and asked.worth == best.worth else best
     return best
@@ -81,24 +91,77 @@ def _nudges(ways: Sequence[Way]) -> bool:
     return False
 
 
-def _best(steps: Sequence[Step]) -> Best | Stuck | TooCrowded:
+def _best(steps: Sequence[Step], budget: Budget) -> Best | Stuck | TooCrowded:
     in_turn = _in_turn(steps)
     if in_turn is not None and in_turn.worth == sum(step.most for step in steps):
         return in_turn
     least = in_turn.worth if in_turn is not None else LONG_AGO
-    tracks = len(steps[0].floor_ns) if steps else 0
-    rings = any(way.ringing_cost for step in steps for _, way in step.ways)
-    states: dict[_Key, _Kept] = {((FREE,) * tracks, 0, (LONG_AGO,) * tracks if rings else ()): (0, None)}
+    states = _beginning(steps)
     for step in steps:
         states = _after(states, step)
-        hopeful = {key: kept for key, kept in states.items() if kept[0] + step.rest >= least}
-        states = _unbeaten(hopeful) if len(hopeful) > 1 else hopeful
+        budget.spend_states(len(states))
+        states = _unbeaten(_hopeful(states, step, least))
         if not states:
             return Stuck(step.pluck)
-        if len(states) > MOST_STATES:
-            return TooCrowded(step.pluck)
+        if len(states) > MOST_AT_ONCE or budget.spent:
+            return TooCrowded(_narrowed(steps), _relaxed(steps))
+    return _heaviest(states)
+
+
+def _beginning(steps: Sequence[Step]) -> _States:
+    tracks = len(steps[0].floor_ns) if steps else 0
+    rings = any(way.ringing_cost for step in steps for _, way in step.ways)
+    return {((FREE,) * tracks, 0, (LONG_AGO,) * tracks if rings else ()): (0, None)}
+
+
+def _hopeful(states: _States, step: Step, least: int) -> _States:
+    """The states that may still keep as much as a choice that is known."""
+    return {key: kept for key, kept in states.items() if kept[0] + step.rest >= least}
+
+
+def _heaviest(states: _States) -> Best:
     worth, chain = max(states.values(), key=lambda kept: kept[0])
     return Best(spots=_listed(chain), worth=worth)
+
+
+def _narrowed(steps: Sequence[Step]) -> Best | None:
+    """A choice found with the NARROW best states of every pluck only; None where that plays not all that must sound."""
+    states = _beginning(steps)
+    for step in steps:
+        states = _after(states, step)
+        if len(states) > NARROW:
+            states = dict(sorted(_unbeaten(states).items(), key=lambda item: (-item[1][0], item[0]))[:NARROW])
+        if not states:
+            return None
+    return _heaviest(states)
+
+
+def _relaxed(steps: Sequence[Step]) -> int:
+    """What no choice is worth more than: all but the NARROW best states become one that has the best of each.
+
+    Such a state is as free on every track as the freest, and keeps as much as the heaviest of those
+    it stands for (D. Bergman, A. Cire, W.-J. van Hoeve and J. Hooker, Decision Diagrams for
+    Optimization, 2016, from memory: a relaxed diagram).
+    """
+    states = _beginning(steps)
+    for step in steps:
+        states = _after(states, step)
+        if len(states) > NARROW:
+            ranked = sorted(_unbeaten(states).items(), key=lambda item: (-item[1][0], item[0]))
+            states = dict(ranked[:NARROW])
+            if ranked[NARROW:]:
+                key, worth = _best_of_each([key for key, _ in ranked[NARROW:]]), ranked[NARROW][1][0]
+                states[key] = max(states.get(key, (worth, None)), (worth, None), key=lambda kept: kept[0])
+    return max((worth for worth, _ in states.values()), default=0)
+
+
+def _best_of_each(keys: Sequence[_Key]) -> _Key:
+    sounding = 0
+    for key in keys:
+        sounding |= key[1]
+    free_ns = tuple(map(min, *(key[0] for key in keys))) if len(keys) > 1 else keys[0][0]
+    sounded_ns = tuple(map(min, *(key[2] for key in keys))) if len(keys) > 1 else keys[0][2]
+    return free_ns, sounding, sounded_ns
 
 
 def _in_turn(steps: Sequence[Step]) -> Best | None:
@@ -131,9 +194,9 @@ def _in_turn(steps: Sequence[Step]) -> Best | None:
     return Best(spots=tuple(spots), worth=worth)
 
 
-def _after(states: dict[_Key, _Kept], step: Step) -> dict[_Key, _Kept]:
+def _after(states: _States, step: Step) -> _States:
     """The states after one more pluck, from all before it."""
-    found: dict[_Key, _Kept] = {}
+    found: _States = {}
     for (free_ns, sounding, sounded_ns), (worth, chain) in states.items():
         options: list[tuple[_Key, _Kept]] = []
         if not step.must_sound:
@@ -168,18 +231,20 @@ def _seen_from(step: Step, free_ns: tuple[int, ...], sounding: int, sounded_ns: 
     return free, sounding & step.later, sounded
 
 
-def _unbeaten(states: dict[_Key, _Kept]) -> dict[_Key, _Kept]:
+def _unbeaten(states: _States) -> _States:
     """The states of which no other keeps as much and is as free, as quiet and as well provided."""
+    if len(states) <= 1:
+        return states
     ranked = sorted(states.items(), key=lambda item: (-item[1][0], item[0]))
     beats = _beats_one_by_one if len(ranked) <= _FEW else _Beats(len(ranked), len(ranked[0][0][0] + ranked[0][0][2]))
-    kept: dict[_Key, _Kept] = {}
+    kept: _States = {}
     for key, value in ranked:
         if not beats(kept, key):
             kept[key] = value
     return kept
 
 
-def _beats_one_by_one(kept: dict[_Key, _Kept], key: _Key) -> bool:
+def _beats_one_by_one(kept: _States, key: _Key) -> bool:
     """Whether one of the states kept so far, none of which keeps less, is as good in all else."""
     free_ns, sounding, sounded_ns = key
     return any(
@@ -195,7 +260,7 @@ class _Beats:
         self._rows = np.empty((count, width), dtype=np.int64)
         self._bits: list[int] = []
 
-    def __call__(self, kept: dict[_Key, _Kept], key: _Key) -> bool:
+    def __call__(self, kept: _States, key: _Key) -> bool:
         """Whether one of the states kept so far is as good in all else; if none is, it will be kept."""
         row = np.array((*key[0], *key[2]), dtype=np.int64)
         beaten = (self._rows[: len(kept)] <= row).all(axis=1)

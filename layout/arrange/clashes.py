@@ -55,9 +55,10 @@ def _least(holds: Callable[[int], bool], most: int) -> int:
 def _have_room(problem: Problem, forced: Sequence[int]) -> bool:
     """Whether these plucks can all sound, nothing else on the disc."""
     plucks = np.array(forced, dtype=np.int64)
-    found = best_by_time(Steps(problem), plucks)
+    budget = Budget(nodes=MOST_NODES)
+    found = best_by_time(Steps(problem), plucks, budget)
     if isinstance(found, Stuck):
         return False
     if isinstance(found, Best) and not broken_by(problem, found.spots):
         return True
-    return best_coupled(problem, plucks, Budget(nodes=MOST_NODES)).bound is not None
+    return best_coupled(problem, plucks, budget).bound is not None

@@ -105,6 +105,8 @@ class Columns:
             return None
         else:
             spots = spots[inside[0] & inside[1]]
+        if not set(path) <= set(spots.tolist()):
+            return None  # windows within windows: the stretch does not hold all of the path
         room = (end_ns - begin_ns) // int(problem.least_ns[spots].min()) + 1
         return Row(columns=[self._column[s] for s in spots.tolist()], most=room) if room < len(path) else None
 

@@ -29,12 +29,21 @@ QUIET: dict[str, bool | int | float | str] = {
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Row:
-    """least ≤ Σ coefficient · column ≤ most; coefficients of one where none are given."""
+    """least ≤ Σ coefficient · column ≤ most; coefficients of one where none are given; no column twice.
+
+    Raises:
+        ValueError: A column stands twice. HiGHS 1.15 can go on for ever on such a row.
+    """
 
     columns: Sequence[int]
     coefficients: Sequence[float] | None = None
     least: float = -highspy.kHighsInf
     most: float = highspy.kHighsInf
+
+    def __post_init__(self) -> None:
+        """Refuse doubled columns."""
+        if len(set(self.columns)) != len(self.columns):
+            raise ValueError(f"a row names a column twice: {sorted(self.columns)}")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

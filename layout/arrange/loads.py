@@ -25,8 +25,9 @@ def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int]
     """
     if problem.drive is None:
         raise ValueError("no load limit is kept")
-    for at_ns in _crowded_ns(problem, problem.drive, spots):
-        there, loads = loads_at(problem, problem.drive, spots, at_ns)
+    in_time = spots[np.argsort(problem.asked_ns[spots], kind="stable")]
+    for at_ns in _crowded_ns(problem, problem.drive, in_time):
+        there, loads = _lifted_at(problem, problem.drive, in_time, at_ns)
         heaviest: dict[int, int] = {}
         for spot, load in zip(there, loads, strict=True):
             pluck = int(problem.pluck[spot])
@@ -40,8 +41,9 @@ def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
     if problem.drive is None:
         return []
     found = []
-    for at_ns in _crowded_ns(problem, problem.drive, chosen):
-        spots, loads = loads_at(problem, problem.drive, chosen, at_ns)
+    in_time = chosen[np.argsort(problem.asked_ns[chosen], kind="stable")]
+    for at_ns in _crowded_ns(problem, problem.drive, in_time):
+        spots, loads = _lifted_at(problem, problem.drive, in_time, at_ns)
         if sum(loads) > problem.drive.limit:
             found.append(tuple(spots))
     return found
@@ -49,13 +51,20 @@ def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
 
 def loads_at(problem: Problem, drive: Drive, spots: IntArray, at_ns: int) -> tuple[list[int], list[int]]:
     """The spots whose teeth are lifted at a moment, and how much they load the disc then."""
-    before_ns = (problem.asked_ns[spots] - at_ns) % problem.turn_ns
-    near = np.flatnonzero(before_ns < drive.widest_ns)
-    found = [
-        (int(spots[place]), load)
-        for place in near.tolist()
-        if (load := drive.load(int(problem.track[spots[place]]), int(before_ns[place])))
-    ]
+    return _lifted_at(problem, drive, spots[np.argsort(problem.asked_ns[spots], kind="stable")], at_ns)
+
+
+def _lifted_at(problem: Problem, drive: Drive, in_time: IntArray, at_ns: int) -> tuple[list[int], list[int]]:
+    """The same for spots in the order of their asked moments."""
+    asked_ns = problem.asked_ns[in_time]
+    found = []
+    # This turn's, and where the window reaches past the end of the turn the next one's first.
+    for from_ns in (at_ns, at_ns - problem.turn_ns):
+        first, last = np.searchsorted(asked_ns, (from_ns, from_ns + drive.widest_ns))
+        for spot, released_ns in zip(in_time[first:last].tolist(), asked_ns[first:last].tolist(), strict=True):
+            load = drive.load(int(problem.track[spot]), released_ns - from_ns)
+            if load:
+                found.append((spot, load))
     return [spot for spot, _ in found], [load for _, load in found]
 
 

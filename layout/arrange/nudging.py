@@ -60,8 +60,11 @@ class _Company:
     def __init__(self, problem: Problem, spots: Sequence[int], pushes: Sequence[Push]) -> None:
         self.pushes: dict[int, list[Push]] = defaultdict(list)
         for push in pushes:
-            for spot in {push.earlier, push.later}:
-                self.pushes[spot].append(push)
+            if (
+                push.earlier != push.later
+            ):  # one pluck alone on its track pushes itself, once a turn: no matter of nudging
+                self.pushes[push.earlier].append(push)
+                self.pushes[push.later].append(push)
         self._in_time = sorted((int(problem.asked_ns[spot]), spot) for spot in spots)
         self._far_ns = 2 * max(_reach_ns(problem, spot) for spot in spots) + IN_ORDER_NS
 

@@ -61,20 +61,26 @@ class _Candidate:
 
     def __init__(self, way: Way, problems: Sequence[Problem]) -> None:
         self.way = way
-        self.problems = tuple(problems)
         self._solvings = [Solving(problem) for problem in problems]
         self._taken_apart = False
         self.solved: tuple[Solved, ...] | None = None
         self.impossible: tuple[int, Problem, Impossible] | None = None
 
     @property
+    def problems(self) -> tuple[Problem, ...]:
+        """As they were solved: a solving may widen its problem."""
+        return tuple(solving.problem for solving in self._solvings)
+
+    @property
     def bound(self) -> int:
+        """Nothing on this way is worth more."""
         if self.solved is not None:
             return sum(solved.bound for solved in self.solved)
         return sum(solving.bound for solving in self._solvings)
 
     @property
     def kept(self) -> int:
+        """What its solution is worth; 0 before there is one."""
         return sum(solved.worth for solved in self.solved or ())
 
     @property

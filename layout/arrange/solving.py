@@ -18,6 +18,7 @@ from layout.arrange.coupled import best_coupled, worth_of
 from layout.arrange.fitting import fitted
 from layout.arrange.parts import parts_of
 from layout.arrange.problem import Problem
+from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
 from layout.mechanics.arrays import IntArray
 
@@ -63,6 +64,7 @@ class Solving:
 
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
+        self._widened = False
         best = np.zeros(problem.pluck_count, dtype=np.int64)
         np.maximum.at(best, problem.pluck, problem.worth)
         self.bound = int(best.sum())
@@ -97,6 +99,9 @@ class Solving:
         while broken := broken_by(self.problem, self._chosen()):
             if budget.spent:
                 return self._as_it_stands()
+            if not self._widened and self.problem.drive is not None:
+                self._widen()
+                continue
             for plucks in self._joined(broken):
                 group = self._as_one(plucks, budget)
                 if group is None:
@@ -106,6 +111,18 @@ class Solving:
         spots = self._chosen()
         worth = worth_of(self.problem, spots)
         return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
+
+    def _widen(self) -> None:
+        """Let chords too heavy for the drive be spread; what is chosen so far stays as it is."""
+        self._widened = True
+        problem = with_spread_chords(self.problem)
+        if problem is self.problem:
+            return
+        now = np.flatnonzero(problem.spread == 0)
+        for group in self._groups or ():
+            group.spots = tuple(now[list(group.spots)].tolist())
+        self._alone = {pluck: int(now[spot]) for pluck, spot in self._alone.items()}
+        self.problem = problem
 
     def _lower_bound(self) -> None:
         alone = int(self.problem.worth[list(self._alone.values())].sum())
@@ -120,12 +137,21 @@ class Solving:
         return dict(zip(problem.pluck[firsts].tolist(), firsts.tolist(), strict=True))
 
     def _part(self, steps: Steps, plucks: IntArray, budget: Budget) -> _Group | None:
-        found = best_by_time(steps, plucks)
+        found = best_by_time(steps, plucks, budget)
         if isinstance(found, Stuck):
             return None
         if isinstance(found, Best):
             return _Group(plucks=plucks, spots=found.spots, bound=found.worth)
-        return self._as_one(plucks, budget)
+        if budget.spent and found.narrowed is not None:
+            return _Group(plucks=plucks, spots=found.narrowed.spots, bound=found.bound)
+        group = self._as_one(plucks, budget)
+        if (
+            group is not None
+            and found.narrowed is not None
+            and found.narrowed.worth > worth_of(self.problem, group.spots)
+        ):
+            group.spots = found.narrowed.spots
+        return group
 
     def _as_one(self, plucks: IntArray, budget: Budget) -> _Group | None:
         start = fitted(self.problem, plucks, ())

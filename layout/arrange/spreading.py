@@ -15,18 +15,18 @@ NS_PER_MS = 1_000_000
 SPREAD_STEPS_MS = (6, 10, 20, 30, 50)
 
 
-def with_spread_chords(problem: Problem, largest_nudge_ns: int) -> Problem:
+def with_spread_chords(problem: Problem) -> Problem:
     """The same problem with spots more for the chords that could load the disc too much.
 
     Such a chord has, for every step the nudge allows, one more spot for each of its spots, whose
     moment is that of its note in the chord spread by so much either way.
 
     Args:
-        problem: Nothing spread in it; without a drive it is given back as it is.
-        largest_nudge_ns: No step is wider.
+        problem: Without a drive, or with something spread already, it is given back as it is.
     """
+    largest_nudge_ns = int((problem.latest_ns - problem.asked_ns).max(initial=0))
     steps_ns = [step * NS_PER_MS for step in SPREAD_STEPS_MS if step * NS_PER_MS <= largest_nudge_ns]
-    if problem.drive is None or not steps_ns:
+    if problem.drive is None or problem.spread.any() or not steps_ns:
         return problem
     heavy = {
         int(problem.chord[problem.pluck[spot]]) for spots, _ in heavy_moments(problem, _all(problem)) for spot in spots
