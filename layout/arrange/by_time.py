@@ -98,8 +98,8 @@ def _best(steps: Sequence[Step], budget: Budget) -> Best | Stuck | TooCrowded:
     least = in_turn.worth if in_turn is not None else LONG_AGO
     states = _beginning(steps)
     for step in steps:
+        budget.spend_states(len(states) * (len(step.ways) + 1))
         states = _after(states, step)
-        budget.spend_states(len(states))
         states = _unbeaten(_hopeful(states, step, least))
         if not states:
             return Stuck(step.pluck)

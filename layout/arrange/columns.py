@@ -12,7 +12,7 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from layout.arrange.integer_program import Row
-from layout.arrange.loads import heavy_moments
+from layout.arrange.loads import hard_moments
 from layout.arrange.moments_kept import Overrun
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import NO_PLUCK, Problem
@@ -80,7 +80,7 @@ class Columns:
         for one, two in near_pairs(problem, self._spots):
             yield Row(columns=[column[one], column[two]], most=1)
         if problem.drive is not None:
-            for spots, loads in heavy_moments(problem, self._spots):
+            for spots, loads in hard_moments(problem, self._spots):
                 yield Row(columns=[column[spot] for spot in spots], coefficients=loads, most=problem.drive.limit)
         yield from self._spread_rows()
 

@@ -36,6 +36,16 @@ def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int]
             yield there, loads
 
 
+def hard_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int], list[int]]]:
+    """The same, less the moments at which every spot loads the disc no more than at another of them."""
+    rows = [dict(zip(*moment, strict=True)) for moment in heavy_moments(problem, spots)]
+    kept: list[dict[int, int]] = []
+    for row in sorted(rows, key=lambda row: -sum(row.values())):
+        if not any(all(other.get(spot, 0) >= load for spot, load in row.items()) for other in kept):
+            kept.append(row)
+            yield list(row), list(row.values())
+
+
 def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
     """The spots that together load the disc beyond the limit, for every asked moment at which they do."""
     if problem.drive is None:

@@ -62,7 +62,7 @@ class _Candidate:
     def __init__(self, way: Way, problems: Sequence[Problem]) -> None:
         self.way = way
         self._solvings = [Solving(problem) for problem in problems]
-        self._taken_apart = False
+        self.taken_apart = False
         self.solved: tuple[Solved, ...] | None = None
         self.impossible: tuple[int, Problem, Impossible] | None = None
 
@@ -90,8 +90,8 @@ class _Candidate:
 
     def step(self, budget: Budget) -> None:
         """One step on."""
-        if not self._taken_apart:
-            self._taken_apart = True
+        if not self.taken_apart:
+            self.taken_apart = True
             for disc, solving in enumerate(self._solvings):
                 solving.part_by_part(budget)
                 if solving.impossible is not None:
@@ -128,7 +128,7 @@ def search(ways: Sequence[Way], pose: Callable[[Way], Sequence[Problem]], budget
     heapq.heapify(heap)
     shown_by: dict[Way, tuple[int, Problem, Impossible]] = {}
     finished: list[_Candidate] = []
-    while heap and not (finished and budget.spent) and not _enough(finished, waiting[heap[0][1]]):
+    while heap and not budget.spent and not _enough(finished, waiting[heap[0][1]]):
         _, place = heapq.heappop(heap)
         candidate = waiting[place]
         candidate.step(budget)
@@ -138,9 +138,28 @@ def search(ways: Sequence[Way], pose: Callable[[Way], Sequence[Problem]], budget
             finished.append(candidate)
         else:
             heapq.heappush(heap, (_reversed(candidate), place))
+    left = [waiting[place] for _, place in heap]
     if not finished:
-        return NoWay(shown_by=shown_by)
-    return _found(finished, [waiting[place] for _, place in heap], budget)
+        finished, left = _finished_at_last(left, budget, shown_by)
+    return _found(finished, left, budget) if finished else NoWay(shown_by=shown_by)
+
+
+def _finished_at_last(
+    left: Sequence[_Candidate], budget: Budget, shown_by: dict[Way, tuple[int, Problem, Impossible]]
+) -> tuple[list[_Candidate], list[_Candidate]]:
+    """The first candidate that can be finished although nothing may be spent any more, and the others.
+
+    Those that were taken apart come first: what is known of them is known exactly.
+    """
+    ranked = sorted(left, key=lambda candidate: (candidate.taken_apart, candidate.rank), reverse=True)
+    for place, candidate in enumerate(ranked):
+        while candidate.impossible is None and candidate.solved is None:
+            candidate.step(budget)
+        if candidate.solved is not None:
+            return [candidate], ranked[place + 1 :]
+        if candidate.impossible is not None:
+            shown_by[candidate.way] = candidate.impossible
+    return [], []
 
 
 def _reversed(candidate: _Candidate) -> tuple[float, ...]:

@@ -10,9 +10,9 @@ from layout.mechanics.arrays import IntArray, frozen_ints
 
 NS_PER_MS = 1_000_000
 
-# How far either way of its moment a chord may be spread, as far as the nudge goes: from what nobody hears,
-# 6 ms (Friberg and Sundberg, JASA 98, 1995, from memory), to the most a nudge may be; the steps are our own.
-SPREAD_STEPS_MS = (6, 10, 20, 30, 50)
+# How far either way of its moment a chord may be spread, as far as the nudge goes. Teeth load the disc for 20 to
+# 100 ms, so less than 10 ms relieves nothing; 50 ms is the most a nudge may be. The steps are our own.
+SPREAD_STEPS_MS = (10, 20, 30, 50)
 
 
 def with_spread_chords(problem: Problem) -> Problem:
