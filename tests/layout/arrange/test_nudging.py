@@ -115,7 +115,7 @@ def test_a_chord_breaks_where_one_of_its_notes_cannot_follow() -> None:
 )
 def test_notes_heard_one_after_the_other_keep_their_order(other_ms: float, expected_ms: list[float]) -> None:
     other = Asked(at_ms=other_ms, tracks=(1,), nudge_ms=0)
-    pushed = [Asked(at_ms=950, worth=20_000), Asked(at_ms=1000, nudge_ms=30)]
+    pushed = [Asked(at_ms=950, worth=2000), Asked(at_ms=1000, worth=100, nudge_ms=30)]
     problem = problem_with([*pushed, other], least_ms=(75, 75))
 
     assert nudges_ms(problem) == pytest.approx([*expected_ms, 0], abs=1e-5)

@@ -1,0 +1,153 @@
+from itertools import pairwise
+
+import numpy as np
+import pytest
+
+from layout.arrange.comb import comb_of
+from layout.arrange.loading import greatest_load
+from layout.arrange.loads import heavy_moments, overloads
+from layout.arrange.posing import rules_of
+from layout.arrange.problem import Drive, Lift
+from layout.documents import Settings
+from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.mechanics.turning import turning_of
+from tests.layout.arrange.by_hand import MS, Asked, drive_of, problem_with
+from tests.layout.arrange.small_comb import SMALL_COMB, comb_with, spacing_for
+
+ALL = np.arange(2)
+
+
+def test_the_load_grows_in_proportion_up_to_the_release() -> None:
+    drive = drive_of((100,), window_ms=10, limit=1000)
+
+    # 10 ms before nothing, 7.5 before a quarter, 5 before half, all at the release; rounded up.
+    loads = [drive.load(0, round(before_ms * MS)) for before_ms in (11, 10, 7.5, 5, 3.333, 0)]
+
+    assert loads == [0, 0, 25, 50, 67, 100]
+
+
+def test_the_teeth_of_one_track_add_up() -> None:
+    drive = Drive(lifts=((Lift(load=100, window_ns=10), Lift(load=60, window_ns=4)), ()), limit=1)
+
+    assert [drive.load(0, before_ns) for before_ns in (5, 2, 0)] == [50, 80 + 30, 160]
+    assert drive.load(1, 0) == 0
+    assert drive.widest_ns == 10
+
+
+def test_the_load_integrates_to_half_of_peak_and_window() -> None:
+    # Work of a straight spring: ∫ u du = q²/2, so the mean over the window is half the peak.
+    drive = drive_of((100_000,), window_ms=1, limit=1)
+    at_ns = range(0, MS + 1, 1000)
+
+    area = sum((drive.load(0, one) + drive.load(0, two)) / 2 * (two - one) for one, two in pairwise(at_ns))
+
+    assert area == pytest.approx(100_000 * MS / 2, rel=1e-4)
+
+
+def test_a_tooth_still_lifted_counts_at_the_release_of_an_earlier_one() -> None:
+    # 4 ms before its release the second tooth has come to 60 of 100: 60 + 100 = 160.
+    plucks = [Asked(at_ms=1000), Asked(at_ms=1004, tracks=(1,))]
+    too_weak = problem_with(plucks, least_ms=(1, 1), drive=drive_of((100, 100), 10, 159))
+    enough = problem_with(plucks, least_ms=(1, 1), drive=drive_of((100, 100), 10, 160))
+
+    assert overloads(too_weak, ALL) == [(0, 1)]
+    assert overloads(enough, ALL) == []
+
+
+def test_a_tooth_already_released_counts_no_more() -> None:
+    # Each alone carries 100; the first is gone when the second is released, 10 ms later.
+    problem = problem_with(
+        [Asked(at_ms=1000), Asked(at_ms=1010, tracks=(1,))], least_ms=(1, 1), drive=drive_of((100, 100), 10, 100)
+    )
+
+    assert overloads(problem, ALL) == []
+
+
+def test_the_first_plucks_of_the_next_turn_are_lifted_at_the_end_of_this_one() -> None:
+    # From 59,998 to the next turn's 2 are 4 ms: 100 + 60 again.
+    plucks = [Asked(at_ms=2), Asked(at_ms=59_998, tracks=(1,))]
+    problem = problem_with(plucks, least_ms=(1, 1), drive=drive_of((100, 100), 10, 159))
+
+    assert [sorted(group) for group in overloads(problem, ALL)] == [[0, 1]]
+
+
+def test_of_each_pluck_only_the_heaviest_spot_could_be_too_much() -> None:
+    # One pluck, three tracks: 250 together, 100 the heaviest. With a second pluck of 60 they could be 160.
+    alone = [Asked(at_ms=1000, tracks=(0, 1, 2))]
+    drive = drive_of((100, 80, 70, 60), 10, 159)
+    one = problem_with(alone, least_ms=(1, 1, 1, 1), drive=drive)
+    two = problem_with([*alone, Asked(at_ms=1000, tracks=(3,))], least_ms=(1, 1, 1, 1), drive=drive)
+
+    assert list(heavy_moments(one, np.arange(3))) == []
+    assert [(sorted(spots), sorted(loads)) for spots, loads in heavy_moments(two, np.arange(4))] == [
+        ([0, 1, 2, 3], [60, 70, 80, 100])
+    ]
+
+
+def test_without_a_drive_nothing_is_too_heavy() -> None:
+    problem = problem_with([Asked(at_ms=1000), Asked(at_ms=1000, tracks=(1,))], least_ms=(1, 1))
+
+    assert overloads(problem, ALL) == []
+
+
+def test_heavy_moments_of_no_drive_are_a_fault_of_the_program() -> None:
+    moments = heavy_moments(problem_with([Asked(at_ms=1000)]), np.arange(1))
+
+    with pytest.raises(ValueError, match="no load limit is kept"):
+        next(moments)
+
+
+def heavy_comb(**changes: object) -> dict[str, object]:
+    teeth = [{**tooth, "stiffness_n_per_mm": 1.6, "lift_mm": 0.35} for tooth in SMALL_COMB["teeth"]]
+    return {"teeth": teeth, "drive": {"torque_limit_nmm": 40}, **changes}
+
+
+def test_the_greatest_load_is_that_of_all_teeth_lifted_at_one_release() -> None:
+    # Tracks 1 and 2 at 30 and 40 mm: 1.6 · 0.35 = 0.56 N; 16.8 and 22.4 N·mm. Windows 0.35 · 60/(2π·r):
+    # 0.1114 s and 0.0836 s. Track 1 sounds at 1 s, track 2 0.02 s later: 16.8 + 22.4 · (1 − 0.02/0.0836) = 33.84.
+    movement = comb_with(heavy_comb())
+
+    load = greatest_load(movement, turning_of(movement), frozen_ints([0, 1, 0]), frozen_floats([1.0, 1.02, 9.0]))
+
+    assert load is not None
+    assert load.peak_nmm == pytest.approx(33.84, abs=0.005)
+    assert (load.at_s, load.plucks, load.limit_nmm) == (1.0, (0, 1), 40)
+
+
+def test_the_greatest_load_sees_over_the_end_of_the_turn() -> None:
+    # Track 2 at 59.99 s is 0.02 s before track 1 in the next turn, at 0.01: 22.4 + 16.8 · (1 − 0.02/0.1114) = 36.18.
+    movement = comb_with(heavy_comb(before_music_deg=0.01, after_music_deg=0.01))
+
+    load = greatest_load(movement, turning_of(movement), frozen_ints([0, 1]), frozen_floats([0.01, 59.99]))
+
+    assert load is not None
+    assert (load.peak_nmm, load.at_s) == (pytest.approx(36.18, abs=0.005), 59.99)
+
+
+def test_there_is_no_load_without_plucks_or_without_stated_teeth() -> None:
+    stated, unstated = comb_with(heavy_comb()), comb_with()
+    one = frozen_ints([0]), frozen_floats([1.0])
+
+    assert greatest_load(stated, turning_of(stated), frozen_ints([]), frozen_floats([])) is None
+    assert greatest_load(unstated, turning_of(unstated), *one) is None
+
+
+def test_a_limit_of_a_movement_is_kept_in_thousandths_never_above_it() -> None:
+    movement = comb_with(heavy_comb(drive={"torque_limit_nmm": 40.0009}))
+    turning = turning_of(movement)
+
+    rules = rules_of(movement, comb_of(movement), turning, spacing_for(movement), Settings())
+
+    assert rules.drive is not None
+    assert rules.drive.limit == 40_000
+    # Track 1: 16.8 N·mm; 0.35 · 60/(2π · 30) = 0.1114085 s.
+    [lift] = rules.drive.lifts[0]
+    assert lift.load in {16_800, 16_801}
+    assert lift.window_ns == pytest.approx(111_408_460, abs=1000)
+
+
+def test_no_limit_is_kept_where_the_settings_say_so() -> None:
+    movement = comb_with(heavy_comb())
+    spacing, comb, turning = spacing_for(movement), comb_of(movement), turning_of(movement)
+
+    assert rules_of(movement, comb, turning, spacing, Settings(load_limit="ignore")).drive is None
