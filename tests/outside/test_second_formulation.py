@@ -56,10 +56,13 @@ MOVED = [
 ]
 # Newton millimetres well below the 500 that the movement states, so that chords are spread or thinned.
 LIGHT_DRIVE = [
-    ("bach chorale 66.6", 150, "none"),
-    ("bach chorale 5.7", 150, "outer"),
-    ("schumann song", 200, "none"),
-    ("corelli grave", 120, "outer"),
+    ("bach chorale 66.6", 80, "none"),
+    ("bach chorale 5.7", 80, "outer"),
+    ("bach chorale 5.7", 100, "none"),
+    ("schumann song", 100, "none"),
+    ("corelli grave", 80, "outer"),
+    ("corelli grave", 120, "none"),
+    ("forest flower fling", 60, "none"),
 ]
 # Millimetres, so wide that many pairs of tracks come too near to each other.
 WIDE_WEBS = [
