@@ -18,7 +18,7 @@ from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import NO_PLUCK, Problem
 from layout.mechanics.arrays import IntArray
 
-_STEPS_TOGETHER = 2  # spots on one track that a row from the start lets through at most; longer ones come when broken
+_STEPS_TOGETHER = 6  # spots on one track that a row from the start lets through at most; longer ones come when broken
 
 
 class Columns:
@@ -123,24 +123,20 @@ class Columns:
         return by_track
 
     def _held_rows(self, spots: list[int]) -> Iterator[Row]:
-        """Rows over the spots of one track: those pairwise too near, and those of which few fit a stretch."""
+        """Rows over the spots of one track that lie wholly in a stretch of time too short for all of them."""
         problem = self._problem
-        earliest = problem.earliest_ns[spots].tolist()
-        latest = problem.latest_ns[spots].tolist()
-        least_ns = int(problem.least_ns[spots].min())
+        there = np.array(spots, dtype=np.int64)
+        earliest_ns, latest_ns, pluck = problem.earliest_ns[there], problem.latest_ns[there], problem.pluck[there]
+        columns = np.array([self._column[spot] for spot in spots], dtype=np.int64)
+        least_ns = int(problem.least_ns[there].min())
+        begins_ns = np.unique(earliest_ns).tolist()
         for room in range(1, _STEPS_TOGETHER + 1):
-            last_end = -1
-            for first in range(len(spots)):
-                inside = [first]
-                place = first + 1
-                while place < len(spots) and latest[place] - earliest[first] < room * least_ns:
-                    if earliest[place] >= earliest[first]:
-                        inside.append(place)
-                    place += 1
-                plucks = {int(problem.pluck[spots[one]]) for one in inside}
-                if len(plucks) > room and inside[-1] > last_end:
-                    last_end = inside[-1]
-                    yield Row(columns=[self._column[spots[one]] for one in inside], most=room)
+            before = np.zeros(len(spots), dtype=np.bool_)
+            for begin_ns in begins_ns:
+                inside = (earliest_ns >= begin_ns) & (latest_ns < begin_ns + room * least_ns)
+                if len(np.unique(pluck[inside])) > room and not np.all(before[inside]):
+                    before = inside
+                    yield Row(columns=columns[inside].tolist(), most=room)
         yield from self._pairs(spots, least_ns)
 
     def _pairs(self, spots: list[int], least_ns: int) -> Iterator[Row]:

@@ -12,7 +12,7 @@ from itertools import pairwise
 from layout.arrange.budget import Budget
 from layout.arrange.columns import Columns
 from layout.arrange.integer_program import Answer, IntegerProgram
-from layout.arrange.moments_kept import Moments, moments_kept
+from layout.arrange.moments_kept import overruns
 from layout.arrange.problem import Problem
 from layout.mechanics.arrays import IntArray
 
@@ -55,12 +55,12 @@ def best_coupled(problem: Problem, plucks: IntArray, budget: Budget, start: Sequ
         if answer.ones is None:
             return Coupled(spots=None, worth=0, bound=columns.most if bound is None else bound)
         spots = columns.spots_of(answer.ones)
-        kept = moments_kept(problem, spots)
-        if isinstance(kept, Moments):
+        broken = overruns(problem, spots)
+        if not broken:
             return Coupled(spots=spots, worth=worth_of(problem, spots), bound=bound)
         if budget.spent:
             return Coupled(spots=None, worth=0, bound=columns.most if bound is None else bound)
-        program.add([columns.cut(kept)])
+        program.add([columns.cut(one) for one in broken])
 
 
 def _lower(bound: int | None, answer: Answer) -> int | None:

@@ -69,7 +69,7 @@ class IntegerProgram:
     def __init__(self, worth: IntArray, rows: Sequence[Row]) -> None:
         self._columns = len(worth)
         self._highs = highspy.Highs()  # type: ignore[no-untyped-call]  # the library's own gap
-        for name, value in {**QUIET, "mip_rel_gap": 0.0, "mip_abs_gap": _LEAST_GAP}.items():
+        for name, value in {**QUIET, "mip_rel_gap": 0.0, "mip_abs_gap": _LEAST_GAP, "presolve": "off"}.items():
             self._highs.setOptionValue(name, value)
         model = filled_model(worth.astype(np.float64), rows)
         model.col_lower_, model.col_upper_ = np.zeros(len(worth)), np.ones(len(worth))

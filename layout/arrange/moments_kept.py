@@ -98,6 +98,33 @@ def moments_kept(
     return Moments(earliest_ns=at_ns)
 
 
+def overruns(problem: Problem, spots: Sequence[int]) -> list[Overrun]:
+    """What forbids chosen spots together, on every track that has something wrong, and more than once where it has.
+
+    Found one after the other, each time without the last spot of what was found before. Empty where
+    all rules of time are kept.
+    """
+    found = []
+    for together in _companies(problem, spots):
+        left = list(together)
+        while isinstance(kept := moments_kept(problem, left), Overrun):
+            found.append(kept)
+            left.remove(kept.spots[-1])
+    return found
+
+
+def _companies(problem: Problem, spots: Sequence[int]) -> list[list[int]]:
+    """Spots by track; those of tracks beside each other, directly or through others, together."""
+    root = list(range(len(problem.ringing_ns)))
+    for pair in problem.besides:
+        low, high = sorted((root[pair.inner_index], root[pair.outer_index]))
+        root = [low if one == high else one for one in root]
+    members: dict[int, list[int]] = defaultdict(list)
+    for spot in spots:
+        members[root[int(problem.track[spot])]].append(spot)
+    return list(members.values())
+
+
 def _overrun(problem: Problem, last: int, pushed_by: dict[int, Push]) -> Overrun:
     """The path that ends at a spot too late, or the ring of pushes it runs into."""
     path, pushes = [last], []
