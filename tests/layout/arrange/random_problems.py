@@ -2,7 +2,7 @@
 
 Nothing here uses the solver: the order on a track, the loads, the cost of ringing teeth and the moments are
 written down a second time. Numbers are picked in milliseconds, so that chords may be spread; a turn has
-100 to 1000 of them.
+88 to 1000 of them.
 """
 
 import math
@@ -21,8 +21,8 @@ from layout.mechanics.arrays import frozen_ints
 MOST_PLUCKS = 7
 MOST_TRACKS = 3
 MS = 1_000_000  # ns
-LAST_MS = 80  # the last moment asked for
-FREE_MS = 90  # the end of the music
+LAST_STEP = 20  # the last moment asked for, in steps of 4 ms: so that there are chords
+FREE_MS = 84  # the end of the music
 NEVER_NS = 10**18
 
 Pick = Callable[[int, int], int]  # a whole number from one to another, both included
@@ -43,10 +43,10 @@ def problem_of(seed: int) -> Problem:
 def problem_by(pick: Pick) -> Problem:
     """A problem, every number of it picked."""
     count, tracks = pick(0, MOST_PLUCKS), pick(1, MOST_TRACKS)
-    asked_ms = sorted(pick(0, LAST_MS) for _ in range(count))
+    asked_ms = sorted(4 * pick(0, LAST_STEP) for _ in range(count))
     chord = np.cumsum(np.diff(asked_ms, prepend=-1) > 0) - 1
     rings = pick(0, 2) == 0
-    most_nudge_ms = (0, 2, 6, 7, 10)[pick(0, 4)]
+    most_nudge_ms = (0, 3, 6, 10, 12)[pick(0, 4)]
     repeat_ms = [pick(5, 30) for _ in range(tracks)]
     parent = _parents(pick, count)
     spots: list[_Row] = []
@@ -61,7 +61,7 @@ def problem_by(pick: Pick) -> Problem:
         chord=chord.tolist(),
         ringing_ms=ringing_ms,
         rest=(
-            (FREE_MS + 10, 160, 1000)[pick(0, 2)],
+            (FREE_MS + 4, FREE_MS + 12, 1000)[pick(0, 2)],
             _besides(pick, tracks),
             _drive(pick, tracks) if pick(0, 1) else None,
         ),
@@ -101,7 +101,7 @@ def _besides(pick: Pick, tracks: int) -> tuple[Beside, ...]:
 
 def _drive(pick: Pick, tracks: int) -> Drive:
     lifts = tuple(
-        tuple(Lift(load=pick(5, 20), window_ns=pick(1, 15) * MS) for _ in range(pick(0, 2))) for _ in range(tracks)
+        tuple(Lift(load=pick(5, 20), window_ns=pick(1, 25) * MS) for _ in range(pick(0, 2))) for _ in range(tracks)
     )
     return Drive(lifts=lifts, limit=pick(15, 60))
 

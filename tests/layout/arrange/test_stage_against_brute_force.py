@@ -14,6 +14,7 @@ import numpy as np
 import pytest
 
 from layout.arrange import Arrangement, arrange
+from layout.arrange.spreading import SPREAD_STEPS_MS
 from layout.arrange.weights import weigh
 from layout.documents import Movement, Settings
 from layout.documents.pitch import key_of
@@ -48,7 +49,6 @@ SPACINGS = {name: spacing_for(movement, min_web_mm=1.0) for name, movement in MO
 
 ROUNDING_RAD = 1e-9  # the stage lets edges be so much nearer than stated
 GRAIN_S = 2e-9  # and rounds moments to whole nanoseconds
-STEPS_MS = (6, 10, 20, 30, 50)  # by which a chord too heavy for the drive may be spread either way
 FOREVER_S = 1e9
 
 
@@ -166,7 +166,7 @@ class Stage:
         widest_ms = max((1000 * pluck.nudge_s for pluck in self._plucks), default=0.0)
         for chord_s in sorted(heavy):
             members = [place for place, pluck in enumerate(self._plucks) if pluck.asked_s == chord_s]
-            for step_ms in STEPS_MS if len(members) > 1 else ():
+            for step_ms in SPREAD_STEPS_MS if len(members) > 1 else ():
                 for rank, place in enumerate(members):
                     if step_ms <= widest_ms + 1e-6:
                         shift_s = (-step_ms + 2 * step_ms * rank / (len(members) - 1)) / 1000
