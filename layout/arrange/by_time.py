@@ -21,7 +21,7 @@ from layout.arrange.budget import Budget
 from layout.arrange.steps import LONG_AGO, Step, Steps, Way
 from layout.mechanics.arrays import IntArray
 
-MOST_AT_ONCE = 2_000  # states after one pluck; beyond, the integer program is the quicker way
+MOST_AT_ONCE = 250  # states after one pluck; beyond, the integer program is the quicker way
 NARROW = 40  # states after one pluck, where a part is too crowded to be followed in all of them
 FREE = 0  # free before anything to come; no moment is earlier
 _FEW = 12  # states; so many are compared one by one, more as an array

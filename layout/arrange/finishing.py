@@ -1,6 +1,6 @@
 """From the best choice to the arrangement: moments, teeth that take turns, reasons, worth and load."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -24,13 +24,16 @@ from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import Turning
 from layout.read.score import Score
 
+_TRIALS = 4  # nudgings of one choice, each knowing what was too heavy in those before
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Played:
-    """Spots and when they sound."""
+    """Spots and when they sound, and those left out at last for the drive."""
 
     spots: tuple[int, ...]
     at_ns: Mapping[int, int]
+    dropped: tuple[int, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -57,6 +60,7 @@ class Finishing:
         key = np.array([self.comb.key_of_track[one] for one in track.tolist()], dtype=np.int64)
         asked_key = wanted.pitch + semitones
         reasons = reasons_of(problem, played.spots, asked_key.tolist(), self.comb, self.spacing)
+        reasons |= {int(problem.pluck[spot]): "drive-torque" for spot in played.dropped}
         return Arrangement(
             track_index=frozen_ints(track),
             key=frozen_ints(key),
@@ -70,7 +74,7 @@ class Finishing:
             speed_factor=asked.moments.speed_factor,
             from_s=asked.moments.from_s,
             length_s=asked.moments.length_s,
-            worth=self._worth(worth_of(problem, played.spots)),
+            worth=self._worth(solved, worth_of(problem, played.spots)),
             note_weight=_of_all(asked.notes, asked.weighed.weight, self.score.note_count),
             highest=_marked(asked.notes, asked.weighed.highest, self.score.note_count),
             lowest=_marked(asked.notes, asked.weighed.lowest, self.score.note_count),
@@ -79,34 +83,45 @@ class Finishing:
             load=greatest_load(self.movement, self.turning, track, planned_s),
         )
 
-    def _worth(self, kept: int) -> Worth:
-        """Of one disc: its bound is what it keeps and all that could be won on all discs together."""
-        total = sum(solved.worth for solved in self.found.solved)
-        bound = kept + self.found.bound - total
+    def _worth(self, solved: Solved, kept: int) -> Worth:
+        """Of one disc: its bound is what was found for it and all that could be won on all discs together."""
+        bound = solved.worth + self.found.bound - sum(one.worth for one in self.found.solved)
         return Worth(kept=kept, bound=bound, proved=kept == bound, stopped=self.found.stopped)
 
 
 def _played(problem: Problem, spots: tuple[int, ...]) -> _Played:
     """The spots with their moments, equal teeth taking turns.
 
-    The search counts loads at the moments asked for. Should nudges pile up more than the drive
-    carries, the lightest of the plucks at fault is left out, until it carries them.
+    The search counts loads at the moments asked for. Where nudges pile up more than the drive
+    carries, the plucks at fault are kept as far apart as they are asked; where that is not enough,
+    the lightest of them is left out, until the drive carries them.
     """
+    dropped: list[int] = []
     while True:
-        at_ns = nudged(problem, spots)
-        turned = taking_turns(problem, spots, at_ns)
-        at_ns = nudged(problem, turned)
-        heavy = _too_heavy(problem, turned, at_ns)
-        if heavy is None:
-            return _Played(spots=turned, at_ns=at_ns)
-        spots = tuple(spot for spot in turned if spot != heavy)
+        turned = taking_turns(problem, spots, nudged(problem, spots))
+        heavy: list[tuple[int, ...]] = []
+        for _ in range(_TRIALS):
+            at_ns = nudged(problem, turned, heavy)
+            found = _too_heavy(problem, turned, at_ns)
+            if not found:
+                return _Played(spots=turned, at_ns=at_ns, dropped=tuple(dropped))
+            heavy += found
+        lightest = _lightest(problem, heavy)
+        if lightest is None:
+            return _Played(spots=turned, at_ns=at_ns, dropped=tuple(dropped))
+        dropped.append(lightest)
+        spots = tuple(spot for spot in turned if spot != lightest)
 
 
-def _too_heavy(problem: Problem, spots: tuple[int, ...], at_ns: Mapping[int, int]) -> int | None:
-    """The lightest spot that may go of those that load the disc too much at their moments; None where all is well."""
+def _too_heavy(problem: Problem, spots: tuple[int, ...], at_ns: Mapping[int, int]) -> list[tuple[int, ...]]:
+    """The spots that load the disc too much at their moments, for every moment at which they do."""
     planned_ns = problem.asked_ns.copy()
     planned_ns[list(spots)] = [at_ns[spot] for spot in spots]
-    heavy = overloads(replace(problem, asked_ns=planned_ns), np.array(spots, dtype=np.int64))
+    return overloads(replace(problem, asked_ns=planned_ns), np.array(spots, dtype=np.int64))
+
+
+def _lightest(problem: Problem, heavy: Sequence[Sequence[int]]) -> int | None:
+    """The lightest of these spots that may go; None where all must stay."""
     stays = set(problem.parent.tolist()) | set(np.flatnonzero(problem.must_sound).tolist())
     may_go = [spot for group in heavy for spot in group if int(problem.pluck[spot]) not in stays]
     return min(may_go, key=lambda spot: (int(problem.worth[spot]), spot), default=None)

@@ -8,7 +8,8 @@ together and notes keep their order as far as they can.
 
 from bisect import bisect_left
 from collections import defaultdict
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+from itertools import pairwise
 
 import numpy as np
 
@@ -25,7 +26,9 @@ NS_PER_MS = 1_000_000
 LADDER_MS = ((0.0, 1.0), (6.0, 3.0), (10.0, 10.0))
 
 APART_COST = 5.0  # of each millisecond a note leaves its chord, beside its own nudge: a chord should stay one
-OUT_OF_ORDER_COST = 10_000.0  # of each millisecond by which notes lose their order: only where nothing else is left
+# Of each millisecond by which notes lose their order, or come nearer than the drive carries, times the worth of all
+# that moves with them: more than moving all of it costs, so only where nothing else is left.
+LOST_COST = 20.0
 
 # Order is heard from about 20 ms on (Hirsh, JASA 31, 1959, from memory): notes asked further apart keep it.
 ORDER_HEARD_NS = 20 * NS_PER_MS
@@ -34,30 +37,34 @@ IN_ORDER_NS = NS_PER_MS  # how far apart they must stay
 _SETTLING_NS = 2  # what the linear program and rounding its moments may leave; they are put right from so much before
 
 
-def nudged(problem: Problem, spots: Sequence[int]) -> dict[int, int]:
+def nudged(problem: Problem, spots: Sequence[int], heavy: Sequence[Sequence[int]] = ()) -> dict[int, int]:
     """When each chosen spot sounds, in nanoseconds.
 
     Args:
         problem: The rules.
         spots: A choice that keeps every rule.
+        heavy: Spots that came too near to each other for the drive when they were nudged: they are
+            kept as far apart as they are asked, if that can be.
 
     Raises:
         ValueError: The choice has no moments that keep every rule: a fault of the program.
     """
     at_ns = {spot: int(problem.asked_ns[spot]) for spot in spots}
     pushes = pushes_of(problem, spots)
-    blocks = _moving(problem, spots, pushes)
+    company = _Company(problem, spots, pushes, heavy)
+    blocks = _moving(problem, pushes, company)
     if blocks:
-        company = _Company(problem, spots, pushes)
         for block in blocks:
             at_ns.update(_wished(problem, block, at_ns, company))
     return _put_right(problem, spots, at_ns)
 
 
 class _Company:
-    """What stands near a spot: the pushes it has part in, and the spots near in time."""
+    """What stands near a spot: its chord, the pushes it has part in, and the spots near in time."""
 
-    def __init__(self, problem: Problem, spots: Sequence[int], pushes: Sequence[Push]) -> None:
+    def __init__(
+        self, problem: Problem, spots: Sequence[int], pushes: Sequence[Push], heavy: Sequence[Sequence[int]]
+    ) -> None:
         self.pushes: dict[int, list[Push]] = defaultdict(list)
         for push in pushes:
             if (
@@ -66,7 +73,23 @@ class _Company:
                 self.pushes[push.earlier].append(push)
                 self.pushes[push.later].append(push)
         self._in_time = sorted((int(problem.asked_ns[spot]), spot) for spot in spots)
-        self._far_ns = 2 * max(_reach_ns(problem, spot) for spot in spots) + IN_ORDER_NS
+        self._far_ns = 2 * max((_reach_ns(problem, spot) for spot in spots), default=0) + IN_ORDER_NS
+        self._chord_of = {spot: int(problem.chord[problem.pluck[spot]]) for spot in spots}
+        self._chords: dict[int, list[int]] = defaultdict(list)
+        for spot, chord in self._chord_of.items():
+            self._chords[chord].append(spot)
+        self.heavy: dict[int, list[tuple[int, int]]] = defaultdict(list)
+        for group in heavy:
+            in_time = sorted(group, key=lambda spot: (int(problem.asked_ns[spot]), spot))
+            for pair in pairwise(in_time):
+                self.heavy[pair[0]].append(pair)
+                self.heavy[pair[1]].append(pair)
+
+    def moved_with(self, spot: int, asked_ns: int) -> set[int]:
+        """The spots that may have to move where this one does, unpushed: its chord, and what it overtakes."""
+        beside = {one for pair in self.order_heard(spot, asked_ns) for one in pair}
+        beside |= {one for pair in self.heavy.get(spot, ()) for one in pair}
+        return (beside | set(self._chords[self._chord_of[spot]])) - {spot}
 
     def order_heard(self, spot: int, asked_ns: int) -> Iterator[tuple[int, int]]:
         """Pairs of this spot and another whose order is heard and could be lost by nudging, the earlier first."""
@@ -77,36 +100,37 @@ class _Company:
                 yield (spot, other) if asked_ns < other_ns else (other, spot)
 
 
-def _moving(problem: Problem, spots: Sequence[int], pushes: Sequence[Push]) -> list[list[int]]:
-    """The spots that may have to move, in blocks that do not touch: runs with a repeat too soon, and their chords."""
+def _moving(problem: Problem, pushes: Sequence[Push], company: _Company) -> list[list[int]]:
+    """The spots that may have to move, in blocks that do not touch.
+
+    Runs of a track with a repeat too soon, and what moves with their spots; and what came too near
+    for the drive.
+    """
     near: dict[int, list[int]] = defaultdict(list)
-    found: list[int] = []
+    found: list[int] = list(company.heavy)
     for push in pushes:
         spare_ns = int(problem.asked_ns[push.later] - problem.asked_ns[push.earlier]) - push.least_ns
         if push.earlier != push.later and spare_ns < _reach_ns(problem, push.earlier) + _reach_ns(problem, push.later):
             near[push.earlier].append(push.later)
             near[push.later].append(push.earlier)
-        if spare_ns < 0:
+        if spare_ns < 0 and push.earlier != push.later:
             found += [push.earlier, push.later]
-    moving = _reached(found, near)
-    chords: dict[int, list[int]] = defaultdict(list)
-    for spot in spots:
-        chords[int(problem.chord[problem.pluck[spot]])].append(spot)
-    mates = {spot: chords[int(problem.chord[problem.pluck[spot]])] for spot in moving}
-    joined = {spot: [*near[spot], *mates.get(spot, ())] for spot in moving}
-    for spot, others in mates.items():
-        for other in others:
-            joined.setdefault(other, []).append(spot)
+    pushed = _reached(found, near)
+    joined: dict[int, set[int]] = {spot: set(near[spot]) for spot in pushed}
+    for spot in sorted(pushed):
+        for other in company.moved_with(spot, int(problem.asked_ns[spot])):
+            joined[spot].add(other)
+            joined.setdefault(other, set()).add(spot)
     blocks, seen = [], set[int]()
     for spot in sorted(joined):
         if spot not in seen:
-            block = sorted(_reached([spot], joined) & set(joined))
+            block = sorted(_reached([spot], joined))
             seen.update(block)
             blocks.append(block)
     return blocks
 
 
-def _reached(begin: Sequence[int], near: Mapping[int, Sequence[int]]) -> set[int]:
+def _reached(begin: Iterable[int], near: Mapping[int, Iterable[int]]) -> set[int]:
     reached, waiting = set(begin), list(begin)
     while waiting:
         for other in near.get(waiting.pop(), ()):
@@ -130,7 +154,11 @@ def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], co
         program.keep_apart(push.earlier, push.later, push.least_ns, at_ns)
     heard = dict.fromkeys(pair for spot in block for pair in company.order_heard(spot, int(problem.asked_ns[spot])))
     for earlier, later in heard:
-        program.keep_order(earlier, later, at_ns)
+        program.keep_if_possible(earlier, later, IN_ORDER_NS, at_ns)
+    heavy = dict.fromkeys(pair for spot in block for pair in company.heavy.get(spot, ()))
+    for earlier, later in heavy:
+        asked_ns = int(problem.asked_ns[later] - problem.asked_ns[earlier])
+        program.keep_if_possible(earlier, later, asked_ns, at_ns)
     return program.moments_ns()
 
 
@@ -145,6 +173,7 @@ class _Program:
         self._lower: list[float] = []
         self._upper: list[float] = []
         self._rows: list[Row] = []
+        self._lost_cost = LOST_COST * float(problem.worth[self._block].sum())
         for spot in self._block:
             asked_ns = int(problem.asked_ns[spot])
             later = self._steps(spot, (int(problem.latest_ns[spot]) - asked_ns) / NS_PER_MS)
@@ -156,10 +185,10 @@ class _Program:
         """One spot sounds at least so long after another."""
         self._rows.append(self._later_by(earlier, later, least_ns, at_ns, ()))
 
-    def keep_order(self, earlier: int, later: int, at_ns: Mapping[int, int]) -> None:
-        """One spot sounds after another, if that can be."""
-        lost = self._column(OUT_OF_ORDER_COST, float("inf"))
-        self._rows.append(self._later_by(earlier, later, IN_ORDER_NS, at_ns, (lost,)))
+    def keep_if_possible(self, earlier: int, later: int, least_ns: int, at_ns: Mapping[int, int]) -> None:
+        """One spot sounds at least so long after another, if that can be."""
+        lost = self._column(self._lost_cost, float("inf"))
+        self._rows.append(self._later_by(earlier, later, least_ns, at_ns, (lost,)))
 
     def moments_ns(self) -> dict[int, int]:
         """The moments at the least cost; those asked for where there is no solution."""
