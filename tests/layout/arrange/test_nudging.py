@@ -121,6 +121,22 @@ def test_notes_heard_one_after_the_other_keep_their_order(other_ms: float, expec
     assert nudges_ms(problem) == pytest.approx([*expected_ms, 0], abs=1e-5)
 
 
+def test_the_order_is_worth_more_than_any_nudge() -> None:
+    # The first weighs twenty plain notes; still it moves 5 ms rather than let the second pass the third.
+    pushed = [Asked(at_ms=950, worth=20_000), Asked(at_ms=1000, nudge_ms=30)]
+    problem = problem_with([*pushed, Asked(at_ms=1021, tracks=(1,), nudge_ms=0)], least_ms=(75, 75))
+
+    assert nudges_ms(problem) == pytest.approx([-5, 20, 0], abs=1e-5)
+
+
+def test_a_note_that_nothing_pushes_gives_way_to_keep_the_order() -> None:
+    # The second must go to 1025; the third, asked 21 ms after it, goes to 1026.
+    pushed = [Asked(at_ms=950, nudge_ms=0), Asked(at_ms=1000, nudge_ms=30)]
+    problem = problem_with([*pushed, Asked(at_ms=1021, tracks=(1,), nudge_ms=30)], least_ms=(75, 75))
+
+    assert nudges_ms(problem) == pytest.approx([0, 25, 5], abs=1e-5)
+
+
 def test_the_order_is_given_up_where_nothing_can_keep_it() -> None:
     pushed = [Asked(at_ms=950, nudge_ms=0), Asked(at_ms=1000, nudge_ms=30)]
     problem = problem_with([*pushed, Asked(at_ms=1021, tracks=(1,), nudge_ms=0)], least_ms=(75, 75))
