@@ -16,7 +16,7 @@ def chord_on(limit: int, *, window_ms: float = 15.0, more: tuple[Asked, ...] = (
 
 
 def asked_ms(problem: Problem, spread: int) -> list[float]:
-    return (problem.asked_ns[problem.spread == spread] / MS).tolist()
+    return [float(at_ns) / MS for at_ns in problem.asked_ns[problem.spread == spread]]
 
 
 def test_a_chord_is_spread_evenly_the_lowest_first() -> None:
@@ -77,7 +77,7 @@ def solved_ms(problem: Problem) -> list[float]:
     solved = solving.together(Budget())
     assert not isinstance(solved, Impossible)
     assert solved.worth == solved.bound
-    return (solving.problem.asked_ns[list(solved.spots)] / MS).tolist()
+    return [float(solving.problem.asked_ns[spot]) / MS for spot in solved.spots]
 
 
 def test_a_chord_too_heavy_is_spread_before_a_note_is_dropped() -> None:

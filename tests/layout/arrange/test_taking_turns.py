@@ -11,7 +11,7 @@ BOTH = (0, 1)
 def tracks_taken(problem: Problem, spots: list[int]) -> list[int]:
     """The tracks of these spots once they have taken turns, at the moments asked for."""
     turned = taking_turns(problem, spots, {spot: int(problem.asked_ns[spot]) for spot in spots})
-    return problem.track[list(turned)].tolist()
+    return [int(problem.track[spot]) for spot in turned]
 
 
 def test_equal_teeth_take_turns_the_longest_quiet_first() -> None:

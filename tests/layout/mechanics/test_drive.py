@@ -65,8 +65,8 @@ def test_teeth_that_are_not_usable_lift_nothing() -> None:
     assert [len(track) for track in lifts] == [1, 1, 1, 1, 1, 0]
 
 
-@pytest.mark.parametrize("field", ["stiffness_n_per_mm", "lift_mm"])
-def test_one_usable_tooth_without_a_number_leaves_the_load_unknown(field: str) -> None:
-    movement = comb_of_one(**{field: None})
+@pytest.mark.parametrize("unstated", [{"stiffness_n_per_mm": None}, {"lift_mm": None}])
+def test_one_usable_tooth_without_a_number_leaves_the_load_unknown(unstated: dict[str, Any]) -> None:
+    movement = comb_of_one(45.0, 0.0, **unstated)
 
     assert lifts_of(movement, turning_of(movement)) is None
