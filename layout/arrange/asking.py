@@ -9,6 +9,7 @@ from layout.arrange.plucks import Wanted, wanted_plucks
 from layout.arrange.rulings import Rulings
 from layout.arrange.splitting import disc_passages
 from layout.arrange.weights import Weighed, weigh
+from layout.arrange.writing import Played, as_written
 from layout.documents.settings import Settings
 from layout.documents.settings_passage import Passage
 from layout.mechanics.arrays import IntArray, frozen_ints
@@ -67,5 +68,9 @@ def _asked(score: Score, settings: Settings, rulings: Rulings, free_turn_s: floa
         np.setdiff1d(np.arange(score.note_count), np.fromiter(moments.out, dtype=np.int64), assume_unique=True)
     )
     weighed = weigh(score, notes, settings.channels.lead)
-    wanted = wanted_plucks(score, notes, moments.asked_s, weighed, rulings, settings)
+    plain = wanted_plucks(score, notes, moments.asked_s, weighed, rulings, settings)
+    played = Played(
+        score=score, notes=notes, weighed=weighed, speed_factor=moments.speed_factor, free_turn_s=free_turn_s
+    )
+    wanted = as_written(plain, played, settings)
     return Asked(moments=moments, notes=notes, weighed=weighed, wanted=wanted)

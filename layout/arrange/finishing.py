@@ -17,6 +17,7 @@ from layout.arrange.problem import Problem
 from layout.arrange.reasons import reasons_of
 from layout.arrange.searching import Found
 from layout.arrange.solving import Solved
+from layout.arrange.spreading import narrowed
 from layout.arrange.taking_turns import taking_turns
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats, frozen_ints
@@ -49,7 +50,7 @@ class Finishing:
 
     def arrangement(self, asked: Asked, problem: Problem, solved: Solved) -> Arrangement:
         """The arrangement of one disc."""
-        played = _played(problem, solved.spots)
+        played = _played(problem, narrowed(problem, solved.spots))
         wanted, semitones = asked.wanted, self.found.way.semitones
         spots = np.array(played.spots, dtype=np.int64)
         pluck, track = problem.pluck[spots], problem.track[spots]

@@ -30,9 +30,11 @@ class Wanted:
         must_sound: Shape (n,). Whether a ruling forces it, on a track or anywhere.
         on_track: Shape (n,). The track a ruling puts it on, from 0, or NO_TRACK.
         outer: Shape (n,). Whether one of its notes is the highest or the lowest heard at its onset.
+        fixed: Shape (n,). Whether it stays in its octave: extra plucks, and those they belong to.
         nudge_ns: Shape (n,). How far it may be nudged either way: the least that any of its notes allows.
         shift_ns: Shape (n,). From the moment asked for to where it stands in a chord that is spread.
         rest_ns: Shape (n,). How long its tooth is not to be plucked again, whatever its wheel can do; mostly 0.
+        alternates_ns: Shape (n,). The same, where its pitch has several tracks.
         foreign: Shape (n,). Whether the harmony becomes foreign to it while it may still ring.
         parent: Shape (n,). For an extra pluck the pluck it belongs to, before it in order; else NO_PLUCK.
         again_of: Shape (n,). For an extra pluck the note it belongs to; else NO_NOTE.
@@ -45,9 +47,11 @@ class Wanted:
     must_sound: BoolArray
     on_track: IntArray
     outer: BoolArray
+    fixed: BoolArray
     nudge_ns: IntArray
     shift_ns: IntArray
     rest_ns: IntArray
+    alternates_ns: IntArray
     foreign: BoolArray
     parent: IntArray
     again_of: IntArray
@@ -88,9 +92,11 @@ def wanted_plucks(
         must_sound=np.array([one is not None for one in forced], dtype=np.bool_),
         on_track=frozen_ints(NO_TRACK if one is None or one.track is None else one.track for one in forced),
         outer=_any_of(weighed.highest | weighed.lowest, starts),
+        fixed=np.zeros(count, dtype=np.bool_),
         nudge_ns=frozen_ints(np.rint(np.where(melody, melody_ms, largest_ms) * NS_PER_MS).astype(np.int64)),
         shift_ns=frozen_ints(nothing),
         rest_ns=frozen_ints(nothing),
+        alternates_ns=frozen_ints(nothing),
         foreign=np.zeros(count, dtype=np.bool_),
         parent=frozen_ints(nothing + NO_PLUCK),
         again_of=frozen_ints(nothing + NO_NOTE),

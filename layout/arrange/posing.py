@@ -98,6 +98,8 @@ def pose(wanted: Wanted, semitones: int, rules: Rules) -> Problem:
     )
     worth = np.maximum(wanted.weight[pluck] * fit // FIT_GRAINS**2, 1)
     ringing_ns = round(FADED_S * NS_PER_S) if rules.ringing_cost else 0
+    several = np.bincount(pluck, minlength=len(asked_ns)) > 1
+    rest_ns = np.where(several, np.maximum(wanted.rest_ns, wanted.alternates_ns), wanted.rest_ns)
     first_spot = np.searchsorted(pluck, np.arange(len(asked_ns) + 1))
     return Problem(
         must_sound=wanted.must_sound,
@@ -109,7 +111,7 @@ def pose(wanted: Wanted, semitones: int, rules: Rules) -> Problem:
         asked_ns=frozen_ints(moment_ns),
         earliest_ns=frozen_ints(earliest_ns[pluck]),
         latest_ns=frozen_ints(latest_ns[pluck]),
-        least_ns=frozen_ints(np.maximum(rules.least_ns[track], wanted.rest_ns[pluck])),
+        least_ns=frozen_ints(np.maximum(rules.least_ns[track], rest_ns[pluck])),
         chord=frozen_ints(np.cumsum(np.diff(asked_ns, prepend=-1) > 0) - 1),
         spread=frozen_ints(spread),
         ringing_cost=frozen_ints(np.minimum(worth * rules.ringing_cost // FIT_GRAINS, worth - 1)),
@@ -125,6 +127,7 @@ def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntA
     shifts = [0] if rules.octaves == "none" else [0, -OCTAVE, OCTAVE]
     may_move = wanted.outer if rules.octaves == "outer" else np.full(len(wanted.pitch), rules.octaves == "all")
     found = []
+    may_move = may_move & ~wanted.fixed
     table = _Table(rules.comb)
     free = wanted.on_track == NO_TRACK
     for shift in shifts:

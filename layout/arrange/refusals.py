@@ -105,7 +105,7 @@ def _why(posed: Posed, plucks: Sequence[int], spacing: Spacing) -> str:
 
 def _is_in_the_way(posed: Posed, conflict: Conflict, spacing: Spacing) -> bool:
     least_ns = float(spacing.least_rad[conflict.track_index]) * posed.turn_ns / (2 * np.pi)
-    return conflict.reason == "web" or conflict.apart_ns < least_ns
+    return conflict.reason == "web" or (conflict.reason != "drive-torque" and conflict.apart_ns < least_ns)
 
 
 def _near(posed: Posed, conflict: Conflict, spacing: Spacing) -> str:

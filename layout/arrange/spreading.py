@@ -1,9 +1,11 @@
 """Chords too heavy for the drive may be spread: every note of one at its own moment, the lowest first."""
 
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
 
+from layout.arrange.broken import broken_by
 from layout.arrange.loads import heavy_moments
 from layout.arrange.problem import Problem
 from layout.mechanics.arrays import IntArray, frozen_ints
@@ -38,6 +40,53 @@ def with_spread_chords(problem: Problem) -> Problem:
         return problem
     added = np.flatnonzero(np.isin(problem.chord[problem.pluck], chords))
     return _with_spots(problem, added, steps_ns)
+
+
+def narrowed(problem: Problem, spots: Sequence[int]) -> tuple[int, ...]:
+    """The same choice with every spread chord spread no wider than it must be.
+
+    Args:
+        problem: The rules.
+        spots: A choice that keeps every rule, by pluck.
+    """
+    chosen = {int(problem.pluck[spot]): spot for spot in spots}
+    spread_chords = sorted({int(problem.chord[problem.pluck[spot]]) for spot in spots if problem.spread[spot]})
+    for chord in spread_chords:
+        mine = [pluck for pluck in chosen if problem.chord[pluck] == chord]
+        for spread in range(int(problem.spread[chosen[mine[0]]])):
+            tried = {pluck: _same_spot(problem, chosen[pluck], spread) for pluck in mine}
+            together = chosen | {pluck: spot for pluck, spot in tried.items() if spot is not None}
+            if None not in tried.values() and not broken_by(problem, _near(problem, together, chord)):
+                chosen = together
+                break
+    return tuple(sorted(chosen.values()))
+
+
+def _same_spot(problem: Problem, spot: int, spread: int) -> int | None:
+    """The spot of the same pluck on the same track at the same worth with another spread."""
+    pluck = int(problem.pluck[spot])
+    for one in range(int(problem.first_spot[pluck]), int(problem.first_spot[pluck + 1])):
+        if problem.spread[one] == spread and problem.track[one] == problem.track[spot]:
+            return one
+    return None
+
+
+def _near(problem: Problem, chosen: Mapping[int, int], chord: int) -> list[int]:
+    """The chosen spots that a chord may disturb: on its tracks and those beside them, and those lifted with it."""
+    mine = [spot for pluck, spot in chosen.items() if problem.chord[pluck] == chord]
+    tracks = {int(problem.track[spot]) for spot in mine}
+    beside = {(pair.inner_index, pair.outer_index) for pair in problem.besides}
+    while more := {track for pair in beside if tracks & set(pair) for track in pair} - tracks:
+        tracks |= more
+    widest_ns = problem.drive.widest_ns if problem.drive is not None else 0
+    reach_ns = 2 * widest_ns + int((problem.latest_ns - problem.earliest_ns).max(initial=0))
+    at_ns = int(problem.asked_ns[mine[0]])
+    found = []
+    for spot in sorted(chosen.values()):
+        apart_ns = abs(int(problem.asked_ns[spot]) - at_ns)
+        if int(problem.track[spot]) in tracks or min(apart_ns, problem.turn_ns - apart_ns) <= reach_ns:
+            found.append(spot)
+    return found
 
 
 def spread_ns(rank: IntArray, count: IntArray, step_ns: int) -> IntArray:
