@@ -105,6 +105,15 @@ def test_the_web_is_the_reason_on_close_tracks() -> None:
     assert left_out(arrangement) == {0: "web"}
 
 
+def test_rulings_too_heavy_for_the_drive_are_refused_with_the_load() -> None:
+    with pytest.raises(
+        RulingError,
+        match=r"note 1 \(/rulings/1\) and note 0 \(/rulings/0\) cannot both sound: together they load the disc with "
+        r"39 N·mm, and the drive carries 30 N·mm; drop one of the two",
+    ):
+        ruled(C4_AND_D4, movement=comb_of_load(30))
+
+
 def test_three_rulings_too_heavy_together_are_all_named() -> None:
     # Any two are carried: the heaviest are D4 and E4 on track 4, 56 N·mm. All three are 67.2 at least.
     with pytest.raises(RulingError, match=r"note 2 .*, note 1 .* and note 0 .* cannot all sound: together they load"):
