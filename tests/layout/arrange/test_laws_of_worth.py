@@ -150,6 +150,7 @@ def test_the_best_given_as_rulings_is_the_best_again(comb: str, seed: int) -> No
 
     ruled = arrange(score, movement, same, spacing)
 
+    assert set(left_out(ruled).values()) <= {"ruled-out"}
     assert set(ruled.notes) == set(free.notes)
     assert {*zip(ruled.notes, ruled.track_index.tolist(), strict=True)} == {
         *zip(free.notes, free.track_index.tolist(), strict=True)
