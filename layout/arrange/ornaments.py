@@ -20,6 +20,8 @@ GRACE_SHORTER = 2.0
 def ornaments(score: Score, notes: IntArray, speed_factor: float) -> BoolArray:
     """Which of the notes asked for belong to trills or are grace notes, as fast as the disc plays them.
 
+    Of notes of one channel that begin together the highest is looked at; chords are no ornaments.
+
     Args:
         score: The tune.
         notes: Shape (n,). Indices of the notes asked for, rising.
@@ -28,6 +30,7 @@ def ornaments(score: Score, notes: IntArray, speed_factor: float) -> BoolArray:
     found = np.zeros(len(notes), dtype=np.bool_)
     for channel in np.unique(score.channel[notes]).tolist():
         places = np.flatnonzero(score.channel[notes] == channel)
+        places = places[np.diff(score.onset_s[notes[places]], append=np.inf) > 0]
         there = notes[places]
         onset_s, pitch = score.onset_s[there] / speed_factor, score.pitch[there]
         found[places] = _trilled(onset_s, pitch) | _graces(onset_s, pitch, score.duration_s[there] / speed_factor)

@@ -12,14 +12,16 @@ import numpy as np
 
 from layout.arrange.ornaments import ornaments
 from layout.arrange.plucks import NS_PER_MS, Wanted
-from layout.arrange.spreading import ranks_in_chords, spread_ns
 from layout.arrange.weights import FADED_S, Weighed
 from layout.documents.settings import Settings
 from layout.documents.settings_writing import Writing
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats, frozen_ints
 from layout.read.score import Score
 
-# Thousandths of the weight of the note: less than any note of its own is worth, so that none is lost for it.
+NS_PER_S = 1000 * NS_PER_MS
+
+# Thousandths of the weight of the pluck, as far as two extra plucks are worth less than the least pluck asked for:
+# a long note of the melody is not repeated at the cost of a soft inner note.
 AGAIN_SHARE = 200  # plucked again: the note is heard already
 SECOND_TOOTH_SHARE = 250  # on a second tooth: louder where the tune is
 
@@ -28,6 +30,7 @@ SECOND_TOOTH_SHARE = 250  # on a second tooth: louder where the tune is
 APART_NS = NS_PER_MS
 ORNAMENT_SPAN_S = 0.6  # a note of the same pitch later than this is no part of the ornament
 
+_ROUNDING = 1e-6  # of an interval: a note of just one and a half intervals is plucked again, wherever it begins
 _CHORD_S = 0.25  # seconds; notes that begin within this of a new bass note make its harmony
 _SEMITONES = 12  # of an octave
 
@@ -57,11 +60,11 @@ def as_written(wanted: Wanted, played: Played, settings: Settings) -> Wanted:
     Args:
         wanted: The plucks of the notes, no extra ones among them.
         played: The notes.
-        settings: Writing and the largest nudge are used.
+        settings: Writing is used.
     """
     writing = settings.writing
     if writing.chords == "bass-first":
-        wanted = _bass_first(wanted, settings)
+        wanted = _bass_first(wanted, played.free_turn_s)
     if writing.ornaments == "over-doubled-teeth":
         wanted = _over_doubled_teeth(wanted, played)
     if writing.ringing_bass_cost:
@@ -78,12 +81,25 @@ class _Extra:
     alternates_ns: int
 
 
-def _bass_first(wanted: Wanted, settings: Settings) -> Wanted:
-    """Every pluck's place in its chord, spread over the largest nudge either way."""
-    new = np.diff(wanted.asked_s, prepend=-1.0) > 0
-    rank, count = ranks_in_chords(np.cumsum(new))
-    shift_ns = spread_ns(rank, count, round(settings.largest_nudge_ms * NS_PER_MS))
-    return replace(wanted, shift_ns=frozen_ints(np.where(count > 1, shift_ns, 0)))
+def _bass_first(wanted: Wanted, free_turn_s: float) -> Wanted:
+    """Every pluck's place in its chord: evenly from as early as the lowest may be to as late as the highest may.
+
+    None leaves its own nudge; none comes before a lower one, and only where that leaves no room between do two come
+    together.
+    """
+    chord = np.cumsum(np.diff(wanted.asked_s, prepend=-1.0) > 0)
+    asked_ns = np.rint(wanted.asked_s * NS_PER_S).astype(np.int64)
+    early_ns = -np.minimum(wanted.nudge_ns, asked_ns)
+    late_ns = np.minimum(wanted.nudge_ns, np.maximum(round(free_turn_s * NS_PER_S) - asked_ns, 0))
+    shift_ns = np.zeros(len(chord), dtype=np.int64)
+    starts = np.flatnonzero(np.diff(chord, prepend=0, append=len(chord) + 1))
+    for first, stop in pairwise(starts.tolist()):
+        if stop - first > 1:
+            early, late = early_ns[first:stop], late_ns[first:stop]
+            even = early[0] + (late[-1] - early[0]) * np.arange(stop - first) // (stop - first - 1)
+            not_before, not_after = np.maximum.accumulate(early), np.minimum.accumulate(late[::-1])[::-1]
+            shift_ns[first:stop] = np.clip(even, not_before, not_after)
+    return replace(wanted, shift_ns=frozen_ints(shift_ns))
 
 
 def _over_doubled_teeth(wanted: Wanted, played: Played) -> Wanted:
@@ -100,7 +116,7 @@ def _over_doubled_teeth(wanted: Wanted, played: Played) -> Wanted:
 
 def _longer_than(apart_s: float, wanted: Wanted, one: int, two: int) -> int:
     """A rest that no nudging of the two plucks makes up for."""
-    return round(apart_s * 1e9) + int(wanted.nudge_ns[one] + wanted.nudge_ns[two]) + APART_NS
+    return round(apart_s * NS_PER_S) + int(wanted.nudge_ns[one] + wanted.nudge_ns[two]) + APART_NS
 
 
 def _next_of_pitch(wanted: Wanted) -> list[tuple[int, int]]:
@@ -115,21 +131,27 @@ def _again(wanted: Wanted, played: Played, writing: Writing) -> list[_Extra]:
     interval_s = writing.pluck_again_s
     if interval_s is None:
         return []
-    ends_s = _ends_s(wanted, played)
+    ends_s = np.minimum(_ends_s(wanted, played), played.free_turn_s + interval_s)
     for pluck, next_pluck in _next_of_pitch(wanted):
         ends_s[pluck] = min(ends_s[pluck], wanted.asked_s[next_pluck])
-    alternates_ns = round(interval_s * 1e9) + 2 * int(wanted.nudge_ns.max(initial=0)) + APART_NS
+    alternates_ns = round(interval_s * NS_PER_S) + 2 * int(wanted.nudge_ns.max(initial=0)) + APART_NS
+    shares = _shares(wanted, AGAIN_SHARE)
     found = []
     for pluck, end_s in enumerate(ends_s.tolist()):
         asked_s = float(wanted.asked_s[pluck])
-        times = int(max((end_s - asked_s) / interval_s - 0.5, 0.0))
-        weight = int(wanted.weight[pluck]) * AGAIN_SHARE // 1000
+        times = int(max((end_s - asked_s) / interval_s - 0.5 + _ROUNDING, 0.0))
         found += [
-            _Extra(parent=pluck, asked_s=moment_s, weight=weight, alternates_ns=alternates_ns)
+            _Extra(parent=pluck, asked_s=moment_s, weight=shares[pluck], alternates_ns=alternates_ns)
             for time in range(1, times + 1)
             if (moment_s := asked_s + time * interval_s) <= played.free_turn_s
         ]
     return found
+
+
+def _shares(wanted: Wanted, thousandths: int) -> list[int]:
+    """What an extra pluck of each pluck is worth."""
+    less_than_half = (min(wanted.weight.tolist(), default=0) - 1) // 2
+    return [max(min(weight * thousandths // 1000, less_than_half), 1) for weight in wanted.weight.tolist()]
 
 
 def _ends_s(wanted: Wanted, played: Played) -> FloatArray:
@@ -144,11 +166,12 @@ def _second_teeth(wanted: Wanted, played: Played, writing: Writing) -> list[_Ext
     least = writing.two_teeth_from_velocity
     if least is None:
         return []
+    shares = _shares(wanted, SECOND_TOOTH_SHARE)
     return [
         _Extra(
             parent=pluck,
             asked_s=float(wanted.asked_s[pluck]),
-            weight=int(wanted.weight[pluck]) * SECOND_TOOTH_SHARE // 1000,
+            weight=shares[pluck],
             alternates_ns=0,
         )
         for pluck, notes in enumerate(wanted.notes)
@@ -158,9 +181,9 @@ def _second_teeth(wanted: Wanted, played: Played, writing: Writing) -> list[_Ext
 
 def _foreign(wanted: Wanted, played: Played) -> BoolArray:
     """Bass plucks that may still ring when the bass has gone on to a harmony they are no part of."""
-    lowest = np.zeros(played.score.note_count, dtype=np.bool_)
-    lowest[played.notes] = played.weighed.lowest
-    bass = [pluck for pluck, notes in enumerate(wanted.notes) if any(lowest[note] for note in notes)]
+    in_bass = np.zeros(played.score.note_count, dtype=np.bool_)
+    in_bass[played.notes] = played.weighed.lowest & ~played.weighed.highest  # a melody alone is no bass
+    bass = [pluck for pluck, notes in enumerate(wanted.notes) if in_bass[list(notes)].any()]
     foreign = np.zeros(len(wanted.pitch), dtype=np.bool_)
     for pluck, after in pairwise(bass):
         at_s = float(wanted.asked_s[after])
@@ -194,7 +217,7 @@ def _with_extra(wanted: Wanted, extra: list[_Extra]) -> Wanted:
     return Wanted(
         asked_s=frozen_floats(asked_s[order]),
         pitch=frozen_ints(wanted.pitch[of][order]),
-        weight=merged(wanted.weight, np.array([max(one.weight, 1) for one in extra])),
+        weight=merged(wanted.weight, np.array([one.weight for one in extra])),
         notes=tuple(() if is_extra[one] else wanted.notes[one] for one in order.tolist()),
         must_sound=(np.concatenate([wanted.must_sound, np.zeros(len(extra), dtype=np.bool_)]))[order],
         on_track=merged(wanted.on_track, np.full(len(extra), -1)),
