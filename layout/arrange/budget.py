@@ -6,7 +6,7 @@ from typing import Literal
 # Over everything searched for one tune. A real piece takes tens of thousands of states and a few nodes; these
 # let the worst go on for some tens of seconds.
 MOST_NODES = 20_000  # nodes of the search trees of integer programs
-MOST_STATES = 2_000_000  # states of dynamic programs
+MOST_STATES = 1_000_000  # states of dynamic programs
 
 
 class Budget:

@@ -99,7 +99,7 @@ class Columns:
         spots = np.array(self._by_track[int(problem.track[path[0]])], dtype=np.int64)
         begin_ns, end_ns = int(problem.earliest_ns[path[0]]), int(problem.latest_ns[path[-1]])
         inside = (problem.earliest_ns[spots] >= begin_ns, problem.latest_ns[spots] <= end_ns)
-        if wraps and problem.asked_ns[path[-1]] < problem.asked_ns[path[0]]:
+        if wraps and path[-1] < path[0]:
             spots, end_ns = spots[inside[0] | inside[1]], end_ns + problem.turn_ns
         elif wraps:
             return None
@@ -116,7 +116,7 @@ class Columns:
 
     def _tracks_in_time(self) -> dict[int, list[int]]:
         problem, spots = self._problem, self._spots
-        order = np.lexsort((problem.pluck[spots], problem.asked_ns[spots], problem.track[spots]))
+        order = np.argsort(problem.track[spots], kind="stable")  # spots stand by pluck
         by_track: dict[int, list[int]] = defaultdict(list)
         for spot in spots[order].tolist():
             by_track[int(problem.track[spot])].append(spot)
@@ -145,7 +145,7 @@ class Columns:
         for place, one in enumerate(spots):
             own_ns = int(problem.least_ns[one])
             for two in spots[place + 1 :]:
-                if int(problem.asked_ns[two]) - int(problem.asked_ns[one]) > own_ns + self._widest_ns:
+                if int(problem.asked_ns[two]) - int(problem.asked_ns[one]) > own_ns + 3 * self._widest_ns:
                     break
                 apart_ns = int(problem.latest_ns[two]) - int(problem.earliest_ns[one])
                 inside = problem.earliest_ns[two] >= problem.earliest_ns[one]
@@ -161,11 +161,10 @@ class Columns:
         problem = self._problem
         asked_ns = problem.unspread_ns
         for track, spots in self._by_track.items():
-            ranked = sorted(spots, key=lambda spot: (int(asked_ns[spot]), int(problem.pluck[spot])))
-            for place, spot in enumerate(ranked):
+            for place, spot in enumerate(spots):
                 if problem.ringing_cost[spot]:
                     since_ns = asked_ns[spot] - problem.ringing_ns[track]
-                    before = [one for one in ranked[:place] if problem.pluck[one] != problem.pluck[spot]]
+                    before = [one for one in spots[:place] if problem.pluck[one] != problem.pluck[spot]]
                     yield spot, [one for one in before if asked_ns[one] > since_ns]
 
     def _spread_chords(self) -> list[tuple[int, int]]:

@@ -80,7 +80,7 @@ def worth_of(problem: Problem, spots: Sequence[int]) -> int:
         on_track[int(problem.track[spot])].append(spot)
     asked_ns = problem.unspread_ns
     for track, there in on_track.items():
-        there.sort(key=lambda spot: (int(asked_ns[spot]), int(problem.pluck[spot])))
+        there.sort()  # spots stand by pluck
         for before, spot in pairwise(there):
             if asked_ns[spot] - asked_ns[before] < problem.ringing_ns[track]:
                 worth -= int(problem.ringing_cost[spot])

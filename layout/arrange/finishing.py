@@ -98,20 +98,21 @@ def _played(problem: Problem, spots: tuple[int, ...]) -> _Played:
     the lightest of them is left out, until the drive carries them.
     """
     dropped: list[int] = []
-    while True:
-        turned = taking_turns(problem, spots, nudged(problem, spots))
-        heavy: list[tuple[int, ...]] = []
-        for _ in range(_TRIALS):
-            at_ns = nudged(problem, turned, heavy)
-            found = _too_heavy(problem, turned, at_ns)
-            if not found:
-                return _Played(spots=turned, at_ns=at_ns, dropped=tuple(dropped))
-            heavy += found
-        lightest = _lightest(problem, heavy)
-        if lightest is None:
-            return _Played(spots=turned, at_ns=at_ns, dropped=tuple(dropped))
-        dropped.append(lightest)
-        spots = tuple(spot for spot in turned if spot != lightest)
+    turned = taking_turns(problem, spots, nudged(problem, spots))
+    heavy: list[tuple[int, ...]] = []
+    for _ in range(_TRIALS):
+        at_ns = nudged(problem, turned, heavy)
+        found = _too_heavy(problem, turned, at_ns)
+        if not found:
+            break
+        heavy += found
+    while found and (lightest := _lightest(problem, found)):
+        dropped += lightest
+        turned = tuple(spot for spot in turned if spot not in lightest)
+        heavy = [group for group in heavy if not lightest & set(group)]
+        at_ns = nudged(problem, turned, heavy)
+        found = _too_heavy(problem, turned, at_ns)
+    return _Played(spots=turned, at_ns=at_ns, dropped=tuple(dropped))
 
 
 def _too_heavy(problem: Problem, spots: tuple[int, ...], at_ns: Mapping[int, int]) -> list[tuple[int, ...]]:
@@ -121,11 +122,15 @@ def _too_heavy(problem: Problem, spots: tuple[int, ...], at_ns: Mapping[int, int
     return overloads(replace(problem, asked_ns=planned_ns), np.array(spots, dtype=np.int64))
 
 
-def _lightest(problem: Problem, heavy: Sequence[Sequence[int]]) -> int | None:
-    """The lightest of these spots that may go; None where all must stay."""
+def _lightest(problem: Problem, heavy: Sequence[Sequence[int]]) -> set[int]:
+    """Of each of these groups of spots the lightest that may go, one for all it is in; none where all must stay."""
     stays = set(problem.parent.tolist()) | set(np.flatnonzero(problem.must_sound).tolist())
-    may_go = [spot for group in heavy for spot in group if int(problem.pluck[spot]) not in stays]
-    return min(may_go, key=lambda spot: (int(problem.worth[spot]), spot), default=None)
+    lightest: set[int] = set()
+    for group in heavy:
+        may_go = [spot for spot in group if int(problem.pluck[spot]) not in stays]
+        if may_go and not lightest & set(group):
+            lightest.add(min(may_go, key=lambda spot: (int(problem.worth[spot]), spot)))
+    return lightest
 
 
 def _planned_s(spots: IntArray, asked_s: FloatArray, played: _Played) -> FloatArray:

@@ -54,7 +54,7 @@ def pushes_of(problem: Problem, spots: Sequence[int]) -> list[Push]:
         on_track[int(problem.track[spot])].append(spot)
     pushes = []
     for track in on_track.values():
-        track.sort(key=lambda spot: (int(problem.asked_ns[spot]), int(problem.pluck[spot])))
+        track.sort()  # spots stand by pluck
         pushes += [Push(earlier=one, later=two, least_ns=int(problem.least_ns[one])) for one, two in pairwise(track)]
         round_ns = int(problem.least_ns[track[-1]]) - problem.turn_ns
         pushes.append(Push(earlier=track[-1], later=track[0], least_ns=round_ns, wraps=True))
@@ -149,6 +149,7 @@ def _beside(problem: Problem, on_track: dict[int, list[int]]) -> Iterator[Push]:
         inners, outers = on_track.get(pair.inner_index), on_track.get(pair.outer_index)
         if not inners or not outers:
             continue
+        outers = sorted(outers, key=lambda spot: int(problem.asked_ns[spot]))
         outer_ns = problem.asked_ns[outers]
         reach_ns = _reach_ns(problem, inners) + _reach_ns(problem, outers)
         for turn_ns in (-problem.turn_ns, 0, problem.turn_ns):

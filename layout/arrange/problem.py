@@ -5,15 +5,15 @@ every pluck, so that the worth is greatest and
 
 1. a pluck that must sound has a spot; an extra pluck only where the pluck it belongs to has one;
 2. there are moments x, each within its spot's window [earliest, latest], at which
-   a. on a track, in the order (asked, pluck), each x is at least the spot's `least_ns` before the
-      next, and the last at least as much before the first one turn later;
+   a. on a track, in the order of the plucks, each x is at least the spot's `least_ns` before the next,
+      and the last at least as much before the first one turn later;
    b. two spots of `Beside` tracks stay on the side of the forbidden stretch on which they are asked;
 3. no two spots of `Beside` tracks are asked within a forbidden stretch of each other;
 4. at no asked moment do the teeth of all spots load the disc beyond the limit, every pluck counted
    at its asked moment;
 5. all spots of one `chord` have the same `spread`: it is played together, or spread by one step.
 
-A spot loses its `ringing_cost` where an earlier one on its track is asked less than the track's
+A spot loses its `ringing_cost` where one of an earlier pluck on its track is asked less than the track's
 `ringing_ns` before, chords unspread. Times are nanoseconds, loads thousandths of a newton millimetre, worths those
 of layout.arrange.weights: sums of whole numbers are exact, so the answer is the same everywhere.
 """
@@ -68,7 +68,7 @@ class Drive:
         )
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+@dataclass(frozen=True, kw_only=True, eq=False)  # no slots: what is worked out from the arrays is kept
 class Problem:
     """Spots of n plucks and what forbids them, as the module's text says.
 
@@ -112,7 +112,7 @@ class Problem:
     besides: tuple[Beside, ...]
     drive: Drive | None
 
-    @property
+    @cached_property
     def unspread_ns(self) -> IntArray:
         """Shape (m,). The moment each spot's pluck is asked for while its chord is not spread."""
         return np.asarray(self.asked_ns[self.first_spot[self.pluck]])

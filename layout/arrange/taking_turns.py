@@ -89,14 +89,10 @@ class _Board:
             after_ns += problem.turn_ns if place == len(row) else 0
             if at_ns - before_ns < problem.least_ns[before] or after_ns - at_ns < problem.least_ns[spot]:
                 return False
-            asked = [self._asked(one) for one in (before, spot, after)]
-            if (place and asked[0] > asked[1]) or (place < len(row) and asked[1] > asked[2]):
+            pluck = self._problem.pluck
+            if (place and pluck[before] > pluck[spot]) or (place < len(row) and pluck[spot] > pluck[after]):
                 return False
         return self._is_carried(spot, at_ns)
-
-    def _asked(self, spot: int) -> tuple[int, int]:
-        """What the order on a track goes by."""
-        return int(self._problem.asked_ns[spot]), int(self._problem.pluck[spot])
 
     def _is_carried(self, spot: int, at_ns: int) -> bool:
         """Whether the drive carries the spot beside all that stand."""

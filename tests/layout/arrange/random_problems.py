@@ -160,9 +160,9 @@ class Spot:
     ringing_cost: int
 
     @property
-    def place(self) -> tuple[int, int]:
+    def place(self) -> int:
         """What the order on a track goes by."""
-        return self.asked_ns, self.pluck
+        return self.pluck
 
 
 def spots_of(problem: Problem, pluck: int) -> list[Spot]:

@@ -17,6 +17,7 @@ import pytest
 
 from layout import walk
 from layout.arrange.arrangement import NO_NOTE
+from layout.arrange.loading import greatest_load
 from layout.documents import Cutter, Movement, read_settings
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.place import place
@@ -78,6 +79,9 @@ def with_all_there_is_to_tell(laid_out: LaidOut) -> LaidOut:
         lowest=asked & (score_notes % 4 == 0),
         melody=asked & (score_notes % 6 == 0),
     )
+    disc_turning = laid_out.disc.turning
+    load = greatest_load(laid_out.disc.movement, disc_turning, arrangement.track_index, arrangement.planned_s)
+    arrangement = replace(arrangement, load=load)
     disc = place(arrangement, laid_out.disc.movement, laid_out.disc.cutter)
     report = report_on(laid_out.score, arrangement, disc)
     return replace(laid_out, arrangement=arrangement, disc=disc, plucks=play(disc), report=report)
