@@ -17,7 +17,7 @@ from tests.outside.pieces import ALL_PIECE_NAMES
 from tests.outside.posed import spacing_on
 
 SOON_S = 10.0
-STOPPED_AFTER_S = 20.0  # the search; so that the whole table is a matter of minutes
+STOPPED_AFTER_S = 10.0  # the search; so that the whole table is a matter of minutes
 WEAK_NMM = 200.0  # thick chords load mossbrook-67 with up to 370 N mm where nothing limits them
 
 
