@@ -21,7 +21,7 @@ from layout.arrange.budget import Budget
 from layout.arrange.steps import LONG_AGO, Step, Steps, Way
 from layout.mechanics.arrays import IntArray
 
-MOST_AT_ONCE = 250  # states after one pluck; beyond, the integer program is the quicker way
+MOST_AT_ONCE = 80  # states after one pluck; beyond, the integer program is the quicker way
 NARROW = 40  # states after one pluck, where a part is too crowded to be followed in all of them
 FREE = 0  # free before anything to come; no moment is earlier
 _FEW = 12  # states; so many are compared one by one, more as an array
@@ -47,14 +47,20 @@ class Stuck(NamedTuple):
 
 
 class TooCrowded(NamedTuple):
-    """The part has more than MOST_AT_ONCE states, or more than the budget had left.
+    """The part has more than MOST_AT_ONCE states, or more than the budget had left, at this pluck."""
+
+    pluck: int
+
+
+class Narrow(NamedTuple):
+    """What can be said of a part without following all its states.
 
     Attributes:
-        narrowed: A choice all the same, good and not proved; None where none was found that plays what must sound.
+        best: A choice, good and not proved; None where none was found that plays what must sound.
         bound: No choice is worth more.
     """
 
-    narrowed: Best | None
+    best: Best | None
     bound: int
 
 
@@ -81,6 +87,17 @@ def best_by_time(steps: Steps, plucks: IntArray, budget: Budget) -> Best | Stuck
     return best
 
 
+def narrow_by_time(steps: Steps, plucks: IntArray) -> Narrow:
+    """A good choice of a part's plucks and a bound, in little time whatever the part.
+
+    Args:
+        steps: Of the problem.
+        plucks: One part, rising.
+    """
+    part = steps.of(plucks)
+    return Narrow(best=_narrowed(part), bound=_relaxed(part))
+
+
 def _nudges(ways: Sequence[Way]) -> bool:
     """Whether some of the spots cannot sound at the moments they are asked for, on their own track alone."""
     ended_ns: dict[int, int] = {}
@@ -104,7 +121,7 @@ def _best(steps: Sequence[Step], budget: Budget) -> Best | Stuck | TooCrowded:
         if not states:
             return Stuck(step.pluck)
         if len(states) > MOST_AT_ONCE or budget.spent:
-            return TooCrowded(_narrowed(steps), _relaxed(steps))
+            return TooCrowded(step.pluck)
     return _heaviest(states)
 
 
@@ -236,41 +253,34 @@ def _unbeaten(states: _States) -> _States:
     if len(states) <= 1:
         return states
     ranked = sorted(states.items(), key=lambda item: (-item[1][0], item[0]))
-    beats = _beats_one_by_one if len(ranked) <= _FEW else _Beats(len(ranked), len(ranked[0][0][0] + ranked[0][0][2]))
+    if len(ranked) > _FEW:
+        return _unbeaten_of_many(ranked)
     kept: _States = {}
     for key, value in ranked:
-        if not beats(kept, key):
+        free_ns, sounding, sounded_ns = key
+        beaten = any(
+            not sounding & ~other[1] and all(map(le, other[0], free_ns)) and all(map(le, other[2], sounded_ns))
+            for other in kept
+        )
+        if not beaten:
             kept[key] = value
     return kept
 
 
-def _beats_one_by_one(kept: _States, key: _Key) -> bool:
-    """Whether one of the states kept so far, none of which keeps less, is as good in all else."""
-    free_ns, sounding, sounded_ns = key
-    return any(
-        not sounding & ~other[1] and all(map(le, other[0], free_ns)) and all(map(le, other[2], sounded_ns))
-        for other in kept
-    )
+def _unbeaten_of_many(ranked: Sequence[tuple[_Key, _Kept]]) -> _States:
+    """The same for many states, heaviest first, all held against all before them at once.
 
-
-class _Beats:
-    """The same for many states: those kept so far stand as rows of an array."""
-
-    def __init__(self, count: int, width: int) -> None:
-        self._rows = np.empty((count, width), dtype=np.int64)
-        self._bits: list[int] = []
-
-    def __call__(self, kept: _States, key: _Key) -> bool:
-        """Whether one of the states kept so far is as good in all else; if none is, it will be kept."""
-        row = np.array((*key[0], *key[2]), dtype=np.int64)
-        beaten = (self._rows[: len(kept)] <= row).all(axis=1)
-        if key[1]:
-            beaten = beaten & np.array([not key[1] & ~one for one in self._bits], dtype=np.bool_)
-        if beaten.any():
-            return True
-        self._rows[len(kept)] = row
-        self._bits.append(key[1])
-        return False
+    One that is beaten by a beaten one is beaten by what beats that as well.
+    """
+    rows = np.array([(*key[0], *key[2]) for key, _ in ranked], dtype=np.int64)
+    beats = np.tri(len(ranked), k=-1, dtype=np.bool_)  # by row: those before it
+    for column in rows.T:
+        beats &= column[None, :] <= column[:, None]
+    if any(key[1] for key, _ in ranked):
+        bits = [key[1] for key, _ in ranked]
+        beats &= np.array([[not one & ~other for other in bits] for one in bits], dtype=np.bool_)
+    unbeaten = np.flatnonzero(~beats.any(axis=1)).tolist()
+    return dict(ranked[place] for place in unbeaten)
 
 
 def _listed(chain: _Chain) -> tuple[int, ...]:

@@ -13,7 +13,7 @@ import numpy as np
 
 from layout.arrange.broken import broken_by
 from layout.arrange.budget import Budget
-from layout.arrange.by_time import Best, Stuck, best_by_time
+from layout.arrange.by_time import Best, Stuck, best_by_time, narrow_by_time
 from layout.arrange.coupled import best_coupled, worth_of
 from layout.arrange.fitting import fitted
 from layout.arrange.parts import parts_of
@@ -54,6 +54,7 @@ class _Group:
     plucks: IntArray
     spots: tuple[int, ...]
     bound: int
+    is_best: bool
 
 
 class Solving:
@@ -141,29 +142,34 @@ class Solving:
         if isinstance(found, Stuck):
             return None
         if isinstance(found, Best):
-            return _Group(plucks=plucks, spots=found.spots, bound=found.worth)
-        if budget.spent and found.narrowed is not None:
-            return _Group(plucks=plucks, spots=found.narrowed.spots, bound=found.bound)
-        group = self._as_one(plucks, budget)
-        if (
-            group is not None
-            and found.narrowed is not None
-            and found.narrowed.worth > worth_of(self.problem, group.spots)
-        ):
-            group.spots = found.narrowed.spots
-        return group
+            return _Group(plucks=plucks, spots=found.spots, bound=found.worth, is_best=True)
+        group = None
+        if not budget.spent:
+            group = self._as_one(plucks, budget)
+            if group is None or group.is_best:
+                return group
+        narrow = narrow_by_time(steps, plucks)
+        bound = narrow.bound if group is None else min(narrow.bound, group.bound)
+        choices = [group.spots] if group is not None else []
+        choices += [narrow.best.spots] if narrow.best is not None else []
+        if not choices:
+            return None
+        best = max(choices, key=lambda spots: worth_of(self.problem, spots))
+        return _Group(plucks=plucks, spots=best, bound=bound, is_best=False)
 
     def _as_one(self, plucks: IntArray, budget: Budget) -> _Group | None:
-        start = fitted(self.problem, plucks, ())
-        found = best_coupled(self.problem, plucks, budget, start or ())
+        found = best_coupled(self.problem, plucks, budget)
         if found.bound is None:
             return None
-        best = found.spots
-        if start is not None and (best is None or worth_of(self.problem, start) > found.worth):
-            best = start
-        if best is None:
+        spots = found.spots
+        if spots is None or found.worth < found.bound:
+            by_hand = fitted(self.problem, plucks, spots or ())
+            if by_hand is not None and (spots is None or worth_of(self.problem, by_hand) > found.worth):
+                spots = by_hand
+        if spots is None:
             return None
-        return _Group(plucks=plucks, spots=best, bound=found.bound)
+        is_best = worth_of(self.problem, spots) == found.bound
+        return _Group(plucks=plucks, spots=spots, bound=found.bound, is_best=is_best)
 
     def _chosen(self) -> tuple[int, ...]:
         spots = [spot for group in self._groups or () for spot in group.spots]
@@ -176,7 +182,8 @@ class Solving:
             pluck = int(self.problem.pluck[spot])
             if pluck in self._alone:
                 del self._alone[pluck]
-                groups.append(_Group(plucks=np.array([pluck]), spots=(spot,), bound=int(self.problem.worth[spot])))
+                worth = int(self.problem.worth[spot])
+                groups.append(_Group(plucks=np.array([pluck]), spots=(spot,), bound=worth, is_best=True))
         group_of = {pluck: place for place, group in enumerate(groups) for pluck in group.plucks.tolist()}
         sets: list[set[int]] = []
         for spots in broken:
