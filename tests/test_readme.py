@@ -126,8 +126,7 @@ def test_the_settings_shown_are_the_defaults() -> None:
 def test_the_reasons_shown_are_those_a_note_can_have() -> None:
     [listed] = re.findall(r"left out has one of these reasons: (.*?)\.\n", README, flags=re.DOTALL)
 
-    # the drive is not checked yet, and the README says so
-    assert set(re.findall(r"`([a-z-]+)`", listed)) == set(get_args(LeftOutReason)) - {"drive-torque"}
+    assert set(re.findall(r"`([a-z-]+)`", listed)) == set(get_args(LeftOutReason))
 
 
 def test_the_limits_shown_are_the_limits() -> None:
