@@ -66,6 +66,6 @@ def _graces(onset_s: FloatArray, pitch: IntArray, duration_s: FloatArray) -> Boo
     graces = np.zeros(len(pitch), dtype=np.bool_)
     apart_s = np.diff(onset_s)
     step = np.abs(np.diff(pitch))
-    graces[:-1] = (apart_s > 0) & (apart_s <= GRACE_APART_S) & (step > 0) & (step <= GRACE_STEP)
+    graces[:-1] = (apart_s <= GRACE_APART_S) & (step > 0) & (step <= GRACE_STEP)
     graces[:-1] &= duration_s[1:] >= GRACE_SHORTER * apart_s
     return graces

@@ -187,7 +187,7 @@ def _foreign(wanted: Wanted, played: Played) -> BoolArray:
     foreign = np.zeros(len(wanted.pitch), dtype=np.bool_)
     for pluck, after in pairwise(bass):
         at_s = float(wanted.asked_s[after])
-        if wanted.pitch[after] == wanted.pitch[pluck] or at_s - wanted.asked_s[pluck] >= FADED_S:
+        if at_s - wanted.asked_s[pluck] >= FADED_S:
             continue
         first, last = np.searchsorted(wanted.asked_s, (at_s, at_s + _CHORD_S))
         foreign[pluck] = wanted.pitch[pluck] % _SEMITONES not in wanted.pitch[first:last] % _SEMITONES

@@ -52,8 +52,9 @@ def test_runs_of_a_scale_are_no_trills() -> None:
     assert marked(run_of("C4 D4 E4 D4 C4 D4 E4 D4 C4")) == []
 
 
-def test_the_last_note_of_a_run_may_begin_the_trill_and_the_first_may_end_it() -> None:
+def test_the_last_note_of_a_run_or_a_trill_may_begin_a_trill() -> None:
     assert marked(run_of("C4 D4 E4 F4 E4 F4 G4 A4")) == [2, 3, 4, 5]
+    assert marked(run_of("C4 D4 C4 D4 E4 D4 E4")) == [0, 1, 2, 3, 4, 5, 6]
 
 
 def test_another_channel_neither_trills_along_nor_stands_in_the_way() -> None:

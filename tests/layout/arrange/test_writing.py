@@ -186,12 +186,14 @@ def test_a_softer_note_is_plucked_on_one_tooth_and_a_loud_one_where_there_is_one
 
 
 def test_the_loudest_of_the_notes_of_a_pluck_counts() -> None:
-    notes: list[Lasting] = [(0.25, 0.0, "E4", 20, 1), (0.25, 0.0, "E4", 110, 2)]
+    notes: list[Lasting] = [
+        (0.25, at_s, "E4", velocity, 1 + velocity // 100) for at_s in (0.0, 1.0) for velocity in (20, 110)
+    ]
 
     arrangement = written(notes, {"two_teeth_from_velocity": 100})
 
-    assert sorted(arrangement.notes) == [(), (0, 1)]
-    assert sorted(again_of(arrangement)) == [-1, 0]
+    assert sorted(arrangement.notes) == [(), (), (0, 1), (2, 3)]
+    assert sorted(again_of(arrangement)) == [-1, -1, 0, 2]  # the first note of the pluck it belongs to
 
 
 def test_a_second_tooth_is_not_plucked_where_a_note_needs_it() -> None:
@@ -321,6 +323,16 @@ def test_a_melody_in_the_middle_keeps_its_own_nudge_and_its_place() -> None:
     arrangement = written(notes, {"chords": "bass-first"}, channels={"lead": 2}, **NUDGES)
 
     assert [second for second, _ in played(arrangement)][1:] == [0.98, 0.994, 1.007, 1.02]
+
+
+def test_where_the_melody_leaves_no_room_two_notes_of_a_chord_come_together() -> None:
+    # Nine notes, some without teeth, 5 ms apart from −20: E4, the third, would come at −10, before the melody at −6.
+    pitches = ("C4", "D4", "E4", "F4", "F#4", "G4", "A#4", "B4", "C5")
+    chord = [(0.25, 1.0, pitch, 64, 2 if pitch == "D4" else 1) for pitch in pitches]
+
+    arrangement = written([(0.25, 0.0, "G4"), *chord], {"chords": "bass-first"}, channels={"lead": 2}, **NUDGES)
+
+    assert [second for second, _ in played(arrangement)][1:] == [0.98, 0.994, 0.994, 1.005]
 
 
 def test_a_chord_at_the_beginning_and_one_at_the_end_have_one_side_only() -> None:
