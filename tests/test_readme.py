@@ -98,11 +98,13 @@ def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> 
     for disc in ("1", "2"):
         assert {path.name for path in (tmp_path / "demo/two-discs" / disc).iterdir()} == set(walk.FILES)
     assert {path.name for path in (tmp_path / "demo/by-hand").iterdir()} == set(walk.FILES)
+    written = json.loads((tmp_path / "demo/written/report.json").read_text())
+    assert written["extra_pluck_count"] > 0
 
 
 def test_the_readme_has_examples_to_run() -> None:
     assert len(CURL) == 8
-    assert len(COMMANDS) == 9
+    assert len(COMMANDS) == 11
 
 
 def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:
