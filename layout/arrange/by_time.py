@@ -21,8 +21,8 @@ from layout.arrange.budget import Budget
 from layout.arrange.steps import LONG_AGO, Step, Steps, Way
 from layout.mechanics.arrays import IntArray
 
-MOST_AT_ONCE = 80  # states after one pluck; beyond, the integer program is the quicker way
-NARROW = 40  # states after one pluck, where a part is too crowded to be followed in all of them
+MOST_AT_ONCE = 40  # states after one pluck; beyond, the integer program is the quicker way
+NARROW = 30  # states after one pluck, where a part is too crowded to be followed in all of them
 FREE = 0  # free before anything to come; no moment is earlier
 _FEW = 12  # states; so many are compared one by one, more as an array
 

@@ -126,18 +126,36 @@ class Columns:
         """Rows over the spots of one track that lie wholly in a stretch of time too short for all of them."""
         problem = self._problem
         there = np.array(spots, dtype=np.int64)
-        earliest_ns, latest_ns, pluck = problem.earliest_ns[there], problem.latest_ns[there], problem.pluck[there]
-        columns = np.array([self._column[spot] for spot in spots], dtype=np.int64)
+        earliest_ns, latest_ns = problem.earliest_ns[there], problem.latest_ns[there]
         least_ns = int(problem.least_ns[there].min())
-        begins_ns = np.unique(earliest_ns).tolist()
+        in_step = np.all(np.diff(earliest_ns) >= 0) and np.all(np.diff(latest_ns) >= 0)
         for room in range(1, _STEPS_TOGETHER + 1):
-            before = np.zeros(len(spots), dtype=np.bool_)
-            for begin_ns in begins_ns:
-                inside = (earliest_ns >= begin_ns) & (latest_ns < begin_ns + room * least_ns)
-                if len(np.unique(pluck[inside])) > room and not np.all(before[inside]):
-                    before = inside
-                    yield Row(columns=columns[inside].tolist(), most=room)
+            if in_step and not problem.spread[there].any():
+                yield from self._runs(there, room, room * least_ns)
+            else:
+                yield from self._stretches(there, room, room * least_ns)
         yield from self._pairs(spots, least_ns)
+
+    def _runs(self, there: IntArray, room: int, stretch_ns: int) -> Iterator[Row]:
+        """Rows of one track over every run of spots in a stretch, where windows begin and end in their order."""
+        problem = self._problem
+        ends = np.searchsorted(problem.latest_ns[there], problem.earliest_ns[there] + stretch_ns)
+        firsts = np.arange(len(there))
+        for first in np.flatnonzero((ends - firsts > room) & (np.diff(ends, prepend=-1) > 0)).tolist():
+            yield Row(columns=[self._column[spot] for spot in there[first : ends[first]].tolist()], most=room)
+
+    def _stretches(self, there: IntArray, room: int, stretch_ns: int) -> Iterator[Row]:
+        """The same, windows within windows and several spots of one pluck allowed for."""
+        problem = self._problem
+        earliest_ns, latest_ns, pluck = problem.earliest_ns[there], problem.latest_ns[there], problem.pluck[there]
+        begins_ns = np.unique(earliest_ns)[:, None]
+        inside = (earliest_ns >= begins_ns) & (latest_ns < begins_ns + stretch_ns)
+        once = len(there) == len(np.unique(pluck))
+        before = np.zeros(len(there), dtype=np.bool_)
+        for row in inside[inside.sum(axis=1) > room]:
+            if (row & ~before).any() and (once or len(np.unique(pluck[row])) > room):
+                before = row
+                yield Row(columns=[self._column[spot] for spot in there[row].tolist()], most=room)
 
     def _pairs(self, spots: list[int], least_ns: int) -> Iterator[Row]:
         """Pairs that the rows over a stretch miss: longer rests of one spot, windows within windows."""

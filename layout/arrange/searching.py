@@ -62,7 +62,6 @@ class _Candidate:
     def __init__(self, way: Way, problems: Sequence[Problem]) -> None:
         self.way = way
         self._solvings = [Solving(problem) for problem in problems]
-        self.taken_apart = False
         self.solved: tuple[Solved, ...] | None = None
         self.impossible: tuple[int, Problem, Impossible] | None = None
 
@@ -70,6 +69,11 @@ class _Candidate:
     def problems(self) -> tuple[Problem, ...]:
         """As they were solved: a solving may widen its problem."""
         return tuple(solving.problem for solving in self._solvings)
+
+    @property
+    def taken_apart(self) -> bool:
+        """Whether every part of it has been solved by itself."""
+        return all(solving.taken_apart for solving in self._solvings)
 
     @property
     def bound(self) -> int:
@@ -90,14 +94,12 @@ class _Candidate:
 
     def step(self, budget: Budget) -> None:
         """One step on."""
-        if not self.taken_apart:
-            self.taken_apart = True
-            for disc, solving in enumerate(self._solvings):
-                solving.part_by_part(budget)
+        for disc, solving in enumerate(self._solvings):
+            if not solving.taken_apart:
+                solving.some_parts(budget)
                 if solving.impossible is not None:
                     self.impossible = (disc, solving.problem, solving.impossible)
-                    return
-            return
+                return
         solved = []
         for disc, solving in enumerate(self._solvings):
             one = solving.together(budget)

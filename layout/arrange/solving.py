@@ -22,6 +22,8 @@ from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
 from layout.mechanics.arrays import IntArray
 
+PLUCKS_AT_A_TIME = 200  # in parts solved at one step; between steps other problems may look more promising
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Solved:
@@ -66,37 +68,55 @@ class Solving:
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
         self._widened = False
-        best = np.zeros(problem.pluck_count, dtype=np.int64)
-        np.maximum.at(best, problem.pluck, problem.worth)
-        self.bound = int(best.sum())
+        self._most = np.zeros(problem.pluck_count, dtype=np.int64)
+        np.maximum.at(self._most, problem.pluck, problem.worth)
+        self.bound = int(self._most.sum())
+        self._steps: Steps
+        self._waiting: list[IntArray] | None = None  # parts still to be solved; None before it is taken apart
+        self._open = 0  # what the waiting parts could be worth
         self.impossible: Impossible | None = None
         self._silent = np.flatnonzero(problem.must_sound & (np.diff(problem.first_spot) == 0))
-        self._groups: list[_Group] | None = None
+        self._groups: list[_Group] = []
         self._alone: dict[int, int] = {}
 
-    def part_by_part(self, budget: Budget) -> None:
-        """The first step: every part by itself."""
+    @property
+    def taken_apart(self) -> bool:
+        """Whether every part has been solved by itself."""
+        return self._waiting == []
+
+    def some_parts(self, budget: Budget) -> None:
+        """A step of the first kind: some more parts, each by itself."""
         if len(self._silent):
             self.impossible = Impossible(plucks=self._silent)
             return
-        parts = parts_of(self.problem)
-        self._alone = self._best_spots(parts.alone)
-        self._groups = []
-        steps = Steps(self.problem)
-        for plucks in parts.together:
-            group = self._part(steps, plucks, budget)
+        if self._waiting is None:
+            self._take_apart()
+        looked_at = 0
+        while self._waiting and looked_at < PLUCKS_AT_A_TIME:
+            plucks = self._waiting.pop()
+            looked_at += len(plucks)
+            group = self._part(self._steps, plucks, budget)
             if group is None:
                 self.impossible = Impossible(plucks=plucks)
                 return
             self._groups.append(group)
+            self._open -= int(self._most[plucks].sum())
         self._lower_bound()
+
+    def _take_apart(self) -> None:
+        parts = parts_of(self.problem)
+        self._alone = self._best_spots(parts.alone)
+        # The longest first: they are the most crowded, and lower the bound most.
+        self._waiting = sorted(parts.together, key=len)
+        self._open = sum(int(self._most[plucks].sum()) for plucks in self._waiting)
+        self._steps = Steps(self.problem)
 
     def together(self, budget: Budget) -> Solved | Impossible:
         """The last step: what is broken together, solved together."""
-        if self._groups is None and self.impossible is None:
-            self.part_by_part(budget)
-        if self.impossible is not None or self._groups is None:
-            return self.impossible or Impossible(plucks=self._silent)
+        while not self.taken_apart and self.impossible is None:
+            self.some_parts(budget)
+        if self.impossible is not None:
+            return self.impossible
         while broken := broken_by(self.problem, self._chosen()):
             if budget.spent:
                 return self._as_it_stands()
@@ -120,14 +140,14 @@ class Solving:
         if problem is self.problem:
             return
         now = np.flatnonzero(problem.spread == 0)
-        for group in self._groups or ():
+        for group in self._groups:
             group.spots = tuple(now[list(group.spots)].tolist())
         self._alone = {pluck: int(now[spot]) for pluck, spot in self._alone.items()}
         self.problem = problem
 
     def _lower_bound(self) -> None:
         alone = int(self.problem.worth[list(self._alone.values())].sum())
-        self.bound = min(self.bound, alone + sum(group.bound for group in self._groups or ()))
+        self.bound = min(self.bound, self._open + alone + sum(group.bound for group in self._groups))
 
     def _best_spots(self, plucks: IntArray) -> dict[int, int]:
         """The first of the best unspread spots of each of these plucks."""
@@ -172,12 +192,12 @@ class Solving:
         return _Group(plucks=plucks, spots=spots, bound=found.bound, is_best=is_best)
 
     def _chosen(self) -> tuple[int, ...]:
-        spots = [spot for group in self._groups or () for spot in group.spots]
+        spots = [spot for group in self._groups for spot in group.spots]
         return tuple(sorted([*spots, *self._alone.values()]))
 
     def _joined(self, broken: Sequence[Sequence[int]]) -> list[IntArray]:
         """Take the groups with a part in a breach off the list, and give their plucks, joined as the breaches say."""
-        groups = self._groups or []
+        groups = self._groups
         for spot in [spot for spots in broken for spot in spots]:
             pluck = int(self.problem.pluck[spot])
             if pluck in self._alone:
