@@ -20,6 +20,7 @@ class Budget:
         time_limit_s: float | None = None,
         clock: Callable[[], float] | None = None,
     ) -> None:
+        self._nodes = nodes
         self.nodes_left = nodes
         self.states_left = states
         self._clock = clock
@@ -32,6 +33,11 @@ class Budget:
     def spend_states(self, states: int) -> None:
         """Take states off."""
         self.states_left = max(self.states_left - states, 0)
+
+    @property
+    def nodes_spent(self) -> int:
+        """Nodes taken off so far."""
+        return self._nodes - self.nodes_left
 
     def seconds_left(self) -> float | None:
         """Seconds until the time limit, not below 0; None without one."""

@@ -16,6 +16,7 @@ from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solved, Solving
 
 MOST_TOLD = 5  # transpositions the report tells
+NODES_TO_TELL = 100  # nodes; once the best is proved and so many are spent, the others are told by their bounds
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -130,7 +131,7 @@ def search(ways: Sequence[Way], pose: Callable[[Way], Sequence[Problem]], budget
     heapq.heapify(heap)
     shown_by: dict[Way, tuple[int, Problem, Impossible]] = {}
     finished: list[_Candidate] = []
-    while heap and not budget.spent and not _enough(finished, waiting[heap[0][1]]):
+    while heap and not budget.spent and not _enough(finished, waiting[heap[0][1]], budget):
         _, place = heapq.heappop(heap)
         candidate = waiting[place]
         candidate.step(budget)
@@ -168,14 +169,16 @@ def _reversed(candidate: _Candidate) -> tuple[float, ...]:
     return tuple(-one for one in candidate.rank)
 
 
-def _enough(finished: Sequence[_Candidate], next_one: _Candidate) -> bool:
-    """Whether nothing left can be among the best transpositions told."""
+def _enough(finished: Sequence[_Candidate], next_one: _Candidate, budget: Budget) -> bool:
+    """Whether nothing left can be the best, nor among the transpositions told unless those cost too much to know."""
     best: dict[int, tuple[int, float, int, int]] = {}
     for candidate in finished:
         rank = _rank(candidate.kept, candidate.way)
         best[candidate.way.semitones] = max(best.get(candidate.way.semitones, rank), rank)
     told = sorted(best.values(), reverse=True)[:MOST_TOLD]
-    return len(told) == MOST_TOLD and next_one.rank < told[-1]
+    if not told or next_one.rank >= told[0]:
+        return False
+    return budget.nodes_spent > NODES_TO_TELL or (len(told) == MOST_TOLD and next_one.rank < told[-1])
 
 
 def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: Budget) -> Found:
