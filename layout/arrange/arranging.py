@@ -9,7 +9,7 @@ from layout.arrange.budget import Budget
 from layout.arrange.comb import Comb, comb_of
 from layout.arrange.finishing import Finishing
 from layout.arrange.moments import speed_factors
-from layout.arrange.posing import Rules, pose, rules_of
+from layout.arrange.posing import Rules, most_kept, pose, rules_of
 from layout.arrange.problem import Problem
 from layout.arrange.refusals import Refused, refusal
 from layout.arrange.rulings import Rulings, check_in_time, read_rulings
@@ -74,7 +74,8 @@ def arrange_discs(
     rules = rules_of(movement, comb, turning, spacing, settings)
     asked = _asked_by_speed(tune)
     budget = Budget(time_limit_s=settings.time_limit_s, clock=clock)
-    found = search(_ways(settings, asked), lambda way: _posed(asked[way.speed_factor], way, rules), budget)
+    ways = {way: _most(asked[way.speed_factor], way, rules) for way in _ways(settings, asked)}
+    found = search(ways, lambda way: _posed(asked[way.speed_factor], way, rules), budget)
     if isinstance(found, NoWay):
         raise _refusal(found, asked, tune, comb, spacing)
     finishing = Finishing(score=score, movement=movement, turning=turning, spacing=spacing, comb=comb, found=found)
@@ -142,6 +143,11 @@ def _ways(settings: Settings, factors: Iterable[float]) -> list[Way]:
 
 def _posed(asked: Sequence[Asked], way: Way, rules: Rules) -> list[Problem]:
     return [pose(one.wanted, way.semitones, rules) for one in asked]
+
+
+def _most(asked: Sequence[Asked], way: Way, rules: Rules) -> int:
+    """What no arrangement on a way is worth more than, found in no time: all that the comb has."""
+    return sum(most_kept(one.wanted, way.semitones, rules) for one in asked)
 
 
 def _refusal(

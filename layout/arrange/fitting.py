@@ -3,6 +3,7 @@
 Good, quick and not the best: where a search for the best begins, and what it falls back on.
 """
 
+from bisect import bisect_left, insort
 from collections import defaultdict
 from collections.abc import Sequence
 
@@ -71,7 +72,7 @@ class _Fitting:
             spots, key=lambda one: (one not in wanted, int(problem.spread[one]), -int(problem.worth[one]))
         ):
             if self._fits(spot):
-                self._on_track[int(problem.track[spot])].append(spot)
+                insort(self._on_track[int(problem.track[spot])], spot)
                 self._spot_of[pluck] = spot
                 self._spread_of[int(problem.chord[pluck])] = int(problem.spread[spot])
                 return True
@@ -82,11 +83,27 @@ class _Fitting:
         spread = int(problem.spread[spot])
         if self._spread_of.get(int(problem.chord[problem.pluck[spot]]), spread) != spread:
             return False
+        if self._is_too_near(spot):
+            return False
         company = self._company[int(problem.track[spot])]
         there = [one for track in company for one in self._on_track[track]]
         if isinstance(moments_kept(problem, [*there, spot]), Overrun):
             return False
         return not breaches(problem, [*there, spot]) and self._carries(spot)
+
+    def _is_too_near(self, spot: int) -> bool:
+        """Whether a neighbour on the track is nearer than any nudging makes up for: a quick answer, mostly enough."""
+        problem = self._problem
+        row = self._on_track[int(problem.track[spot])]
+        place = bisect_left(row, spot)
+        before = row[place - 1] if place else None
+        after = row[place] if place < len(row) else None
+        return any(
+            earlier is not None
+            and later is not None
+            and problem.latest_ns[later] - problem.earliest_ns[earlier] < problem.least_ns[earlier]
+            for earlier, later in ((before, spot), (spot, after))
+        )
 
     def _carries(self, spot: int) -> bool:
         """Whether the drive carries one more pluck."""

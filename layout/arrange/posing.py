@@ -6,7 +6,7 @@ import numpy as np
 
 from layout.arrange.comb import Comb
 from layout.arrange.plucks import NO_TRACK, Wanted
-from layout.arrange.problem import Beside, Drive, Lift, Problem
+from layout.arrange.problem import NO_PLUCK, Beside, Drive, Lift, Problem
 from layout.arrange.weights import FADED_S
 from layout.documents.movement import Movement
 from layout.documents.settings import Settings
@@ -122,16 +122,27 @@ def pose(wanted: Wanted, semitones: int, rules: Rules) -> Problem:
     )
 
 
+def most_kept(wanted: Wanted, semitones: int, rules: Rules) -> int:
+    """The weight of all plucks whose pitch the comb has, in any octave where octave moves are allowed."""
+    keys = np.array(sorted(rules.comb.tracks_of_key), dtype=np.int64)
+    pitch = wanted.pitch + semitones
+    if rules.octaves != "none":
+        keys, pitch = keys % OCTAVE, pitch % OCTAVE
+    return int(wanted.weight[np.isin(pitch, keys)].sum())
+
+
 def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntArray, IntArray, IntArray]:
     """Pluck, track, fit in thousandths and spread of every spot, by (pluck, octave, track)."""
     shifts = [0] if rules.octaves == "none" else [0, -OCTAVE, OCTAVE]
     may_move = wanted.outer if rules.octaves == "outer" else np.full(len(wanted.pitch), rules.octaves == "all")
     found = []
-    may_move = may_move & ~wanted.fixed
     table = _Table(rules.comb)
     free = wanted.on_track == NO_TRACK
+    on_comb = np.isin(wanted.pitch + semitones, table.keys)
     for shift in shifts:
-        plucks = np.flatnonzero(free & (may_move | (shift == 0)))
+        # What has extra plucks stays in its octave where it can; extra plucks always do.
+        moves = may_move & (wanted.parent == NO_PLUCK) & ~(wanted.fixed & on_comb)
+        plucks = np.flatnonzero(free & ~_parted(wanted, semitones, rules) & (moves | (shift == 0)))
         of, tracks = table.tracks(plucks, wanted.pitch[plucks] + semitones + shift)
         found.append((of, tracks, np.full(len(of), FIT_GRAINS if shift == 0 else rules.octave_fit)))
     ruled = np.flatnonzero(~free)
@@ -144,6 +155,15 @@ def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntA
     pluck, track, fit = (np.concatenate(part) for part in zip(*found, strict=True))
     order = np.lexsort((track, -fit, pluck))
     return pluck[order], track[order], fit[order], np.zeros(len(order), dtype=np.int64)
+
+
+def _parted(wanted: Wanted, semitones: int, rules: Rules) -> BoolArray:
+    """Extra plucks of plucks that a ruling puts into another octave: they are not played."""
+    parted = np.zeros(len(wanted.pitch), dtype=np.bool_)
+    for extra in np.flatnonzero(wanted.parent != NO_PLUCK).tolist():
+        track = int(wanted.on_track[wanted.parent[extra]])
+        parted[extra] = track != NO_TRACK and rules.comb.key_of_track[track] != wanted.pitch[extra] + semitones
+    return parted
 
 
 class _Table:

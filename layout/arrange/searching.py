@@ -7,7 +7,7 @@ transpositions are known too, as far as the report tells them.
 """
 
 import heapq
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 from layout.arrange.arrangement import Stopped, Tried
@@ -58,30 +58,39 @@ class NoWay:
 
 
 class _Candidate:
-    """One way, as far as it has been looked at."""
+    """One way, as far as it has been looked at. Its problems are posed when it is first stepped."""
 
-    def __init__(self, way: Way, problems: Sequence[Problem]) -> None:
+    def __init__(self, way: Way, pose: Callable[[Way], Sequence[Problem]], first_bound: int) -> None:
         self.way = way
-        self._solvings = [Solving(problem) for problem in problems]
+        self._pose = pose
+        self._first_bound = first_bound
+        self._solvings: list[Solving] | None = None
         self.solved: tuple[Solved, ...] | None = None
         self.impossible: tuple[int, Problem, Impossible] | None = None
 
     @property
     def problems(self) -> tuple[Problem, ...]:
         """As they were solved: a solving may widen its problem."""
-        return tuple(solving.problem for solving in self._solvings)
+        return tuple(solving.problem for solving in self._solvings or ())
 
     @property
     def taken_apart(self) -> bool:
         """Whether every part of it has been solved by itself."""
-        return all(solving.taken_apart for solving in self._solvings)
+        return self._solvings is not None and all(solving.taken_apart for solving in self._solvings)
+
+    @property
+    def is_over(self) -> bool:
+        """Whether it is solved, or cannot be."""
+        return self.solved is not None or self.impossible is not None
 
     @property
     def bound(self) -> int:
         """Nothing on this way is worth more."""
         if self.solved is not None:
             return sum(solved.bound for solved in self.solved)
-        return sum(solving.bound for solving in self._solvings)
+        if self._solvings is None:
+            return self._first_bound
+        return min(self._first_bound, sum(solving.bound for solving in self._solvings))
 
     @property
     def kept(self) -> int:
@@ -95,6 +104,8 @@ class _Candidate:
 
     def step(self, budget: Budget) -> None:
         """One step on."""
+        if self._solvings is None:
+            self._solvings = [Solving(problem) for problem in self._pose(self.way)]
         for disc, solving in enumerate(self._solvings):
             if not solving.taken_apart:
                 solving.some_parts(budget)
@@ -115,54 +126,38 @@ def _rank(worth: int, way: Way) -> tuple[int, float, int, int]:
     return worth, -abs(way.speed_factor - 1), -abs(way.semitones), -way.semitones
 
 
-def search(ways: Sequence[Way], pose: Callable[[Way], Sequence[Problem]], budget: Budget) -> Found | NoWay:
+def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], budget: Budget) -> Found | NoWay:
     """The way that keeps the most.
 
     Of equal ones it is the one whose speed is nearest to as written, then the smallest
-    transposition, then the lower one.
+    transposition, then the lower one. The most promising is solved to its end first, so that
+    something is found whatever the rest of the search costs.
 
     Args:
-        ways: What to search; at least one.
+        ways: What to search, at least one, each with a bound that no solution of it is worth more than.
         pose: The problems of a way, one for each disc.
         budget: What may be spent.
     """
-    waiting = [_Candidate(way, pose(way)) for way in ways]
-    heap = [(_reversed(candidate), place) for place, candidate in enumerate(waiting)]
+    left = [_Candidate(way, pose, bound) for way, bound in ways.items()]
+    heap = [(_reversed(candidate), place) for place, candidate in enumerate(left)]
     heapq.heapify(heap)
-    shown_by: dict[Way, tuple[int, Problem, Impossible]] = {}
+    over: list[_Candidate] = []
     finished: list[_Candidate] = []
-    while heap and not budget.spent and not _enough(finished, waiting[heap[0][1]], budget):
+    while heap and not (finished and (budget.spent or _enough(finished, left[heap[0][1]], budget))):
         _, place = heapq.heappop(heap)
-        candidate = waiting[place]
+        candidate = left[place]
         candidate.step(budget)
-        if candidate.impossible is not None:
-            shown_by[candidate.way] = candidate.impossible
-        elif candidate.solved is not None:
-            finished.append(candidate)
-        else:
-            heapq.heappush(heap, (_reversed(candidate), place))
-    left = [waiting[place] for _, place in heap]
-    if not finished:
-        finished, left = _finished_at_last(left, budget, shown_by)
-    return _found(finished, left, budget) if finished else NoWay(shown_by=shown_by)
-
-
-def _finished_at_last(
-    left: Sequence[_Candidate], budget: Budget, shown_by: dict[Way, tuple[int, Problem, Impossible]]
-) -> tuple[list[_Candidate], list[_Candidate]]:
-    """The first candidate that can be finished although nothing may be spent any more, and the others.
-
-    Those that were taken apart come first: what is known of them is known exactly.
-    """
-    ranked = sorted(left, key=lambda candidate: (candidate.taken_apart, candidate.rank), reverse=True)
-    for place, candidate in enumerate(ranked):
-        while candidate.impossible is None and candidate.solved is None:
+        while not finished and not candidate.is_over:
             candidate.step(budget)
+        if not candidate.is_over:
+            heapq.heappush(heap, (_reversed(candidate), place))
+            continue
+        over.append(candidate)
         if candidate.solved is not None:
-            return [candidate], ranked[place + 1 :]
-        if candidate.impossible is not None:
-            shown_by[candidate.way] = candidate.impossible
-    return [], []
+            finished.append(candidate)
+    if finished:
+        return _found(finished, [left[place] for _, place in heap], budget)
+    return NoWay(shown_by={one.way: one.impossible for one in over if one.impossible is not None})
 
 
 def _reversed(candidate: _Candidate) -> tuple[float, ...]:
@@ -203,5 +198,6 @@ def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: B
         kept=best.kept,
         bound=max(bound, best.kept),
         tried=tuple(list(told.values())[:MOST_TOLD]),
-        stopped=budget.stopped if bound > best.kept else None,
+        # Where nothing has run out, a group was too large for one program.
+        stopped=(budget.stopped or "nodes") if bound > best.kept else None,
     )

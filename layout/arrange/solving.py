@@ -22,6 +22,7 @@ from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
 from layout.mechanics.arrays import IntArray
 
+MOST_TOGETHER = 1_500  # plucks in one integer program; real music puts some hundreds together at most
 PLUCKS_AT_A_TIME = 200  # in parts solved at one step; between steps other problems may look more promising
 
 
@@ -119,11 +120,15 @@ class Solving:
             return self.impossible
         while broken := broken_by(self.problem, self._chosen()):
             if budget.spent:
-                return self._as_it_stands()
+                return self._as_it_stands(self._chosen())
             if not self._widened and self.problem.drive is not None:
                 self._widen()
                 continue
-            for plucks in self._joined(broken):
+            chosen = self._chosen()
+            joined = self._joined(broken)
+            if not all(self._fits_a_program(plucks) for plucks in joined):
+                return self._as_it_stands(chosen)
+            for plucks in joined:
                 group = self._as_one(plucks, budget)
                 if group is None:
                     return Impossible(plucks=plucks)
@@ -164,7 +169,7 @@ class Solving:
         if isinstance(found, Best):
             return _Group(plucks=plucks, spots=found.spots, bound=found.worth, is_best=True)
         group = None
-        if not budget.spent:
+        if not budget.spent and self._fits_a_program(plucks):
             group = self._as_one(plucks, budget)
             if group is None or group.is_best:
                 return group
@@ -190,6 +195,9 @@ class Solving:
             return None
         is_best = worth_of(self.problem, spots) == found.bound
         return _Group(plucks=plucks, spots=spots, bound=found.bound, is_best=is_best)
+
+    def _fits_a_program(self, plucks: IntArray) -> bool:
+        return len(plucks) <= MOST_TOGETHER
 
     def _chosen(self) -> tuple[int, ...]:
         spots = [spot for group in self._groups for spot in group.spots]
@@ -219,10 +227,10 @@ class Solving:
         self._groups = [group for place, group in enumerate(groups) if place not in taken]
         return [np.sort(np.concatenate([groups[place].plucks for place in sorted(one)])) for one in sets]
 
-    def _as_it_stands(self) -> Solved | Impossible:
-        """The choice so far, less what breaks a rule."""
+    def _as_it_stands(self, chosen: Sequence[int]) -> Solved | Impossible:
+        """A choice so far, less what breaks a rule."""
         plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
-        spots = fitted(self.problem, plucks, self._chosen())
+        spots = fitted(self.problem, plucks, chosen)
         if spots is None:
             return Impossible(plucks=plucks)
         worth = worth_of(self.problem, spots)

@@ -7,7 +7,7 @@ import numpy as np
 
 from layout.arrange.broken import broken_by
 from layout.arrange.loads import heavy_moments
-from layout.arrange.problem import Problem
+from layout.arrange.problem import NO_PLUCK, Problem
 from layout.mechanics.arrays import IntArray, frozen_ints
 
 NS_PER_MS = 1_000_000
@@ -106,7 +106,12 @@ def _all(problem: Problem) -> IntArray:
 
 
 def _with_spots(problem: Problem, added: IntArray, steps_ns: list[int]) -> Problem:
-    rank, count = ranks_in_chords(problem.chord)
+    own = np.flatnonzero(problem.parent == NO_PLUCK)  # an extra pluck stands where the pluck it belongs to does
+    rank, count = np.zeros_like(problem.chord), np.zeros_like(problem.chord)
+    rank[own], count[own] = ranks_in_chords(problem.chord[own])
+    extra = np.flatnonzero(problem.parent != NO_PLUCK)
+    with_own = extra[problem.chord[extra] == problem.chord[problem.parent[extra]]]
+    rank[with_own], count[with_own] = rank[problem.parent[with_own]], count[problem.parent[with_own]]
     moments = [problem.asked_ns]
     for step_ns in steps_ns:
         pluck = problem.pluck[added]

@@ -82,6 +82,8 @@ class _Board:
     def _has_room(self, spot: int, at_ns: int) -> bool:
         problem = self._problem
         row = self._on_track[int(problem.track[spot])]
+        if problem.least_ns[spot] > problem.turn_ns:
+            return False  # its own next turn comes too soon
         if row:
             place = bisect_left(row, (at_ns, spot))
             (before_ns, before), (after_ns, after) = row[place - 1], row[place % len(row)]

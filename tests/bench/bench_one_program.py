@@ -40,7 +40,8 @@ def theirs(tune: Posed, semitones: int, conflicts: Conflicts) -> int:
 
 def ours_over_all(tune: Posed) -> int:
     ways = [Way(semitones=semitones, speed_factor=1.0) for semitones in range(-RANGE, RANGE + 1)]
-    found = search(ways, lambda way: [tune.problem(way.semitones)], Budget())
+    most = sum(tune.asked.wanted.weight.tolist())
+    found = search(dict.fromkeys(ways, most), lambda way: [tune.problem(way.semitones)], Budget())
     if not isinstance(found, Found) or found.kept != found.bound:
         raise RuntimeError("not proved")
     return found.kept

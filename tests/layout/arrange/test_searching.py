@@ -28,6 +28,8 @@ from tests.layout.arrange.small_comb import (
 )
 from tests.layout.arrange.test_laws_of_arranging import loosened
 
+ANY = 10**9  # a bound that says nothing
+
 
 def way(semitones: int, speed_factor: float = 1.0) -> Way:
     return Way(semitones=semitones, speed_factor=speed_factor)
@@ -35,7 +37,9 @@ def way(semitones: int, speed_factor: float = 1.0) -> Way:
 
 def searched(worths: dict[Way, int]) -> Found:
     """The search over ways each of which plays one pluck of this worth."""
-    found = search(list(worths), lambda one: [problem_with([Asked(at_ms=0, worth=worths[one])])], Budget())
+    found = search(
+        dict.fromkeys(worths, ANY), lambda one: [problem_with([Asked(at_ms=0, worth=worths[one])])], Budget()
+    )
     assert isinstance(found, Found)
     return found
 
@@ -75,7 +79,7 @@ def test_each_transposition_is_told_once_at_its_best_speed_best_first() -> None:
 def test_ways_that_are_impossible_are_told_with_what_shows_it() -> None:
     two = [Asked(at_ms=0, must_sound=True, nudge_ms=0), Asked(at_ms=1, must_sound=True, nudge_ms=0)]
 
-    found = search([way(0), way(1)], lambda _: [problem_with(two)], Budget())
+    found = search({way(0): ANY, way(1): ANY}, lambda _: [problem_with(two)], Budget())
 
     assert isinstance(found, NoWay)
     assert set(found.shown_by) == {way(0), way(1)}
@@ -86,7 +90,7 @@ def test_ways_that_are_impossible_are_told_with_what_shows_it() -> None:
 def test_an_impossible_way_does_not_hide_a_possible_one() -> None:
     two = [Asked(at_ms=0, must_sound=True, nudge_ms=0), Asked(at_ms=1, must_sound=True, nudge_ms=0, worth=9000)]
 
-    found = search([way(0), way(1)], lambda one: [problem_with(two[: 2 - one.semitones])], Budget())
+    found = search({way(0): ANY, way(1): ANY}, lambda one: [problem_with(two[: 2 - one.semitones])], Budget())
 
     assert isinstance(found, Found)
     assert (found.way, found.kept, found.bound) == (way(1), 1000, 1000)
@@ -96,7 +100,9 @@ def test_the_worth_of_several_discs_counts_together() -> None:
     discs = {way(0): [10, 10], way(1): [1, 18]}
 
     found = search(
-        list(discs), lambda one: [problem_with([Asked(at_ms=0, worth=worth)]) for worth in discs[one]], Budget()
+        dict.fromkeys(discs, ANY),
+        lambda one: [problem_with([Asked(at_ms=0, worth=worth)]) for worth in discs[one]],
+        Budget(),
     )
 
     assert isinstance(found, Found)
@@ -150,7 +156,7 @@ def jumping(after: int) -> Iterator[float]:
     return (0.0 if look < after else 3600.0 for look in count())
 
 
-@pytest.mark.parametrize("looks", [1, 2, 5, 20, 60])
+@pytest.mark.parametrize("looks", [1, 2, 5, 20, 30])
 def test_a_search_out_of_time_gives_a_sound_arrangement_and_says_so(looks: int) -> None:
     best = arranged_with(None).worth
     times_s = jumping(looks)

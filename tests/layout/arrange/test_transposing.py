@@ -9,7 +9,7 @@ from layout.arrange import arrange
 from layout.arrange.budget import Budget
 from layout.arrange.comb import comb_of
 from layout.arrange.plucks import Wanted
-from layout.arrange.posing import Rules, pose, rules_of
+from layout.arrange.posing import Rules, most_kept, pose, rules_of
 from layout.arrange.problem import Beside, Problem
 from layout.arrange.searching import Found, Way, search
 from layout.documents import read_settings, shipped_movement
@@ -124,7 +124,10 @@ def test_a_hopeless_transposition_is_left_half_way() -> None:
             steps.append(1)
             return False
 
-    found = search([Way(semitones=s, speed_factor=1.0) for s in range(-12, 13)], spied, Spy())
+    ways = [Way(semitones=s, speed_factor=1.0) for s in range(-12, 13)]
+    bounds = {way: most_kept(plucks(["C4", "D4", "E4", "G4"]), way.semitones, small_rules()) for way in ways}
+
+    found = search(bounds, spied, Spy())
 
     # 25 transpositions of two steps each would be 50; five are told, and nothing else can be among them.
     assert isinstance(found, Found)
@@ -142,7 +145,7 @@ def test_a_search_out_of_nodes_keeps_a_true_bound_and_says_so() -> None:
     rules = replace(small_rules(), besides=(Beside(inner_index=0, outer_index=1, from_ns=-1000, to_ns=1000),))
     together = replace(plucks(["C4", "D4"]), asked_s=frozen_floats([0.0, 0.0]))
 
-    found = search([Way(semitones=0, speed_factor=1.0)], lambda way: [pose(together, 0, rules)], Empty())
+    found = search({Way(semitones=0, speed_factor=1.0): 2000}, lambda way: [pose(together, 0, rules)], Empty())
 
     # C and D stand beside each other: one of the two sounds. Each alone is 1000, so nothing keeps more than 2000.
     assert isinstance(found, Found)
