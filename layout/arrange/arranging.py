@@ -69,11 +69,11 @@ def arrange_discs(
         DocumentError: The passage of the settings cannot be.
         RulingError: The settings' rulings contradict each other, the tune, the passage or the comb.
     """
+    budget = Budget(time_limit_s=settings.time_limit_s, clock=clock)
     comb, turning = comb_of(movement), turning_of(movement)
     tune = _Tune(score=score, settings=settings, turning=turning, rulings=read_rulings(settings.rulings, score, comb))
     rules = rules_of(movement, comb, turning, spacing, settings)
     asked = _asked_by_speed(tune)
-    budget = Budget(time_limit_s=settings.time_limit_s, clock=clock)
     ways = {way: _most(asked[way.speed_factor], way, rules) for way in _ways(settings, asked)}
     found = search(ways, lambda way: _posed(asked[way.speed_factor], way, rules), budget)
     if isinstance(found, NoWay):
@@ -109,7 +109,13 @@ def _asked_by_speed(tune: _Tune) -> dict[float, tuple[Asked, ...]]:
             found[factor] = asked
     if not found:
         raise errors[0]
-    return found
+    late = {factor: sum(_late_count(one) for one in asked) for factor, asked in found.items()}
+    # A tune that goes past the turn gives no disc to cut: of speeds to choose from those come first that hold it.
+    return {factor: asked for factor, asked in found.items() if late[factor] == min(late.values())}
+
+
+def _late_count(asked: Asked) -> int:
+    return sum(reason == "past-the-turn" for reason in asked.moments.out.values())
 
 
 def _factors(tune: _Tune) -> tuple[float, ...]:

@@ -7,7 +7,7 @@ webs; loads at every asked moment; extra plucks with their own; one spread of a 
 """
 
 from collections import defaultdict
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 
 import numpy as np
 
@@ -50,15 +50,6 @@ class Columns:
     def spots_of(self, ones: IntArray) -> tuple[int, ...]:
         """The spots of a solution, by pluck."""
         return tuple(self._spots[ones[ones < len(self._spots)]].tolist())
-
-    def at_one(self, spots: Sequence[int]) -> IntArray:
-        """The columns at one when these spots are chosen."""
-        chosen = set(spots)
-        ones = [self._column[spot] for spot in spots]
-        ones += [self._ring_column[spot] for spot, before in self._rings if spot in chosen and chosen & set(before)]
-        chords = {(int(self._problem.chord[self._problem.pluck[s]]), int(self._problem.spread[s])) for s in spots}
-        ones += [column for one, column in self._spread_column.items() if one in chords]
-        return np.array(sorted(ones), dtype=np.int64)
 
     def rows(self) -> Iterator[Row]:
         """Every row known from the start."""

@@ -32,22 +32,19 @@ class Coupled:
     bound: int | None
 
 
-def best_coupled(problem: Problem, plucks: IntArray, budget: Budget, start: Sequence[int] = ()) -> Coupled:
+def best_coupled(problem: Problem, plucks: IntArray, budget: Budget) -> Coupled:
     """The best choice for these plucks, by every rule among them.
 
     Args:
         problem: The rules.
         plucks: The group, rising.
         budget: What nodes and time are left; the nodes looked at are taken off.
-        start: Spots of a choice that keeps every rule, if one is known.
     """
     columns = Columns(problem, plucks)
     program = IntegerProgram(columns.worth, list(columns.rows()))
     bound: int | None = None
     while True:
-        answer = program.solve(
-            most_nodes=budget.nodes_left, most_s=budget.seconds_left(), start=columns.at_one(start) if start else None
-        )
+        answer = program.solve(most_nodes=budget.nodes_left, most_s=budget.seconds_left())
         budget.spend(answer.nodes)
         if answer.bound is None and answer.finished:
             return Coupled(spots=None, worth=0, bound=None)

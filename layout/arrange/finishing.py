@@ -25,7 +25,7 @@ from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import Turning
 from layout.read.score import Score
 
-_TRIALS = 4  # nudgings of one choice, each knowing what was too heavy in those before
+_TRIALS = 2  # nudgings of one choice, each knowing what was too heavy in those before
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -75,7 +75,7 @@ class Finishing:
             speed_factor=asked.moments.speed_factor,
             from_s=asked.moments.from_s,
             length_s=asked.moments.length_s,
-            worth=self._worth(solved, worth_of(problem, played.spots)),
+            worth=self._worth(solved, worth_of(problem, played.spots), int(wanted.weight.sum())),
             note_weight=_of_all(asked.notes, asked.weighed.weight, self.score.note_count),
             highest=_marked(asked.notes, asked.weighed.highest, self.score.note_count),
             lowest=_marked(asked.notes, asked.weighed.lowest, self.score.note_count),
@@ -84,9 +84,9 @@ class Finishing:
             load=greatest_load(self.movement, self.turning, track, planned_s),
         )
 
-    def _worth(self, solved: Solved, kept: int) -> Worth:
-        """Of one disc: its bound is what was found for it and all that could be won on all discs together."""
-        bound = solved.worth + self.found.bound - sum(one.worth for one in self.found.solved)
+    def _worth(self, solved: Solved, kept: int, asked: int) -> Worth:
+        """Of one disc: its bound is what was found and could be won on all discs, and no more than is asked of it."""
+        bound = min(solved.worth + self.found.bound - sum(one.worth for one in self.found.solved), asked)
         return Worth(kept=kept, bound=bound, proved=kept == bound, stopped=self.found.stopped)
 
 

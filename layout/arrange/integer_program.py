@@ -26,6 +26,8 @@ QUIET: dict[str, bool | int | float | str] = {
     "random_seed": 0,
 }
 
+ENTRIES_OF_A_NODE = 1_000  # entries of the rows; a node of so many takes some milliseconds
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Row:
@@ -53,7 +55,8 @@ class Answer:
     Attributes:
         ones: The columns at one, rising; None where no solution was found.
         bound: No solution is worth more; None where none exists.
-        nodes: Nodes of the search tree that were looked at.
+        nodes: Nodes of the search tree that were looked at, each counted once for every ENTRIES_OF_A_NODE
+            entries of the program: large programs have slow nodes.
         finished: Whether the search ran to its end.
     """
 
@@ -68,6 +71,7 @@ class IntegerProgram:
 
     def __init__(self, worth: IntArray, rows: Sequence[Row]) -> None:
         self._columns = len(worth)
+        self._entries = sum(len(row.columns) for row in rows)
         self._highs = highspy.Highs()  # type: ignore[no-untyped-call]  # the library's own gap
         for name, value in {**QUIET, "mip_rel_gap": 0.0, "mip_abs_gap": _LEAST_GAP, "presolve": "off"}.items():
             self._highs.setOptionValue(name, value)
@@ -79,31 +83,27 @@ class IntegerProgram:
 
     def add(self, rows: Sequence[Row]) -> None:
         """Add rows."""
+        self._entries += sum(len(row.columns) for row in rows)
         for row in rows:
             coefficients = np.ones(len(row.columns)) if row.coefficients is None else np.array(row.coefficients, float)
             self._highs.addRow(
                 row.least, row.most, len(row.columns), np.array(row.columns, dtype=np.int32), coefficients
             )
 
-    def solve(self, *, most_nodes: int, most_s: float | None, start: IntArray | None = None) -> Answer:
+    def solve(self, *, most_nodes: int, most_s: float | None) -> Answer:
         """The best solution.
 
         Args:
             most_nodes: Nodes to look at, at most.
             most_s: Seconds to take, at most; None for as long as it takes.
-            start: Columns at one in a solution to begin with, if one is known.
         """
         self._highs.setOptionValue("mip_max_nodes", max(most_nodes, 0))
         self._highs.setOptionValue("time_limit", highspy.kHighsInf if most_s is None else max(most_s, 0.0))
         self._highs.clearSolver()
-        if start is not None:
-            values = np.zeros(self._columns)
-            values[start] = 1.0
-            self._highs.setSolution(self._columns, np.arange(self._columns, dtype=np.int32), values)
         self._highs.run()
         status, info = self._highs.getModelStatus(), self._highs.getInfo()
         finished = status == highspy.HighsModelStatus.kOptimal
-        nodes = max(int(info.mip_node_count), 1)
+        nodes = max(int(info.mip_node_count), 1) * (1 + self._entries // ENTRIES_OF_A_NODE)
         if status == highspy.HighsModelStatus.kInfeasible:
             return Answer(ones=None, bound=None, nodes=nodes, finished=True)
         found = info.primal_solution_status == highspy.SolutionStatus.kSolutionStatusFeasible

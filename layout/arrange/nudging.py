@@ -91,6 +91,14 @@ class _Company:
         beside |= {one for pair in self.heavy.get(spot, ()) for one in pair}
         return (beside | set(self._chords[self._chord_of[spot]])) - {spot}
 
+    def spread_pairs(self, problem: Problem, block: Sequence[int]) -> Iterator[tuple[int, int]]:
+        """Neighbours of a chord that is spread, the one asked first before the other."""
+        for chord in dict.fromkeys(self._chord_of[spot] for spot in block):
+            in_time = sorted(self._chords[chord], key=lambda spot: (int(problem.asked_ns[spot]), spot))
+            for one, two in pairwise(in_time):
+                if problem.asked_ns[one] < problem.asked_ns[two]:
+                    yield one, two
+
     def order_heard(self, spot: int, asked_ns: int) -> Iterator[tuple[int, int]]:
         """Pairs of this spot and another whose order is heard and could be lost by nudging, the earlier first."""
         first = bisect_left(self._in_time, (asked_ns - self._far_ns + 1,))
@@ -155,6 +163,8 @@ def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], co
     heard = dict.fromkeys(pair for spot in block for pair in company.order_heard(spot, int(problem.asked_ns[spot])))
     for earlier, later in heard:
         program.keep_if_possible(earlier, later, IN_ORDER_NS, at_ns)
+    for earlier, later in company.spread_pairs(problem, block):
+        program.keep_if_possible(earlier, later, 0, at_ns)
     heavy = dict.fromkeys(pair for spot in block for pair in company.heavy.get(spot, ()))
     for earlier, later in heavy:
         asked_ns = int(problem.asked_ns[later] - problem.asked_ns[earlier])

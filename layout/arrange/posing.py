@@ -25,11 +25,6 @@ ROUNDING_RAD = 1e-9
 
 FIT_GRAINS = 1000  # fits are thousandths, as the factors of a weight are
 
-# How far apart the first and the last note of a chord too heavy for the drive may be put: up to each
-# of these, as far as the nudge goes. From "nobody hears it" to what a spread chord may have: the just
-# noticeable 6 ms (Friberg & Sundberg, JASA 98, 1995, from memory), then steps of our own.
-SPREAD_STEPS_MS = (6.0, 10.0, 20.0, 30.0, 50.0)  # either way of the moment asked
-
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class Rules:

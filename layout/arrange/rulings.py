@@ -1,7 +1,7 @@
 """The maker's rulings, checked against each other, the tune and the movement.
 
 What is asked against one another here does not depend on transposition; what does is told by
-layout.arrange.transposing, with the sentences at the end of this module.
+layout.arrange.refusals.
 """
 
 from collections.abc import Mapping

@@ -16,7 +16,7 @@ from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solved, Solving
 
 MOST_TOLD = 5  # transpositions the report tells
-NODES_TO_TELL = 100  # nodes; once the best is proved and so many are spent, the others are told by their bounds
+NODES_TO_TELL = 300  # nodes; once the best is proved and so many are spent, the others are told by their bounds
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -141,14 +141,12 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
     left = [_Candidate(way, pose, bound) for way, bound in ways.items()]
     heap = [(_reversed(candidate), place) for place, candidate in enumerate(left)]
     heapq.heapify(heap)
-    over: list[_Candidate] = []
     finished: list[_Candidate] = []
+    over = _begun(left, heap, budget, finished)
     while heap and not (finished and (budget.spent or _enough(finished, left[heap[0][1]], budget))):
         _, place = heapq.heappop(heap)
         candidate = left[place]
         candidate.step(budget)
-        while not finished and not candidate.is_over:
-            candidate.step(budget)
         if not candidate.is_over:
             heapq.heappush(heap, (_reversed(candidate), place))
             continue
@@ -158,6 +156,36 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
     if finished:
         return _found(finished, [left[place] for _, place in heap], budget)
     return NoWay(shown_by={one.way: one.impossible for one in over if one.impossible is not None})
+
+
+def _begun(
+    left: Sequence[_Candidate], heap: list[tuple[tuple[float, ...], int]], budget: Budget, finished: list[_Candidate]
+) -> list[_Candidate]:
+    """The candidates that are solved to their end before the search begins, or found impossible on the way.
+
+    They are the most promising, and the same transposition at the slowest speed: slower leaves more
+    room on every track, so hardly any other speed keeps more.
+    """
+    over = []
+    while heap and not finished:
+        _, place = heapq.heappop(heap)
+        over.append(_to_its_end(left[place], budget, finished))
+    if finished and heap:
+        same = [entry for entry in heap if left[entry[1]].way.semitones == finished[0].way.semitones]
+        if same:
+            slowest = min(same, key=lambda entry: left[entry[1]].way.speed_factor)
+            heap.remove(slowest)
+            heapq.heapify(heap)
+            over.append(_to_its_end(left[slowest[1]], budget, finished))
+    return over
+
+
+def _to_its_end(candidate: _Candidate, budget: Budget, finished: list[_Candidate]) -> _Candidate:
+    while not candidate.is_over:
+        candidate.step(budget)
+    if candidate.solved is not None:
+        finished.append(candidate)
+    return candidate
 
 
 def _reversed(candidate: _Candidate) -> tuple[float, ...]:

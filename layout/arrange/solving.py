@@ -119,11 +119,11 @@ class Solving:
         if self.impossible is not None:
             return self.impossible
         while broken := broken_by(self.problem, self._chosen()):
-            if budget.spent:
-                return self._as_it_stands(self._chosen())
             if not self._widened and self.problem.drive is not None:
                 self._widen()
                 continue
+            if budget.spent:
+                return self._as_it_stands(self._chosen())
             chosen = self._chosen()
             joined = self._joined(broken)
             if not all(self._fits_a_program(plucks) for plucks in joined):
@@ -178,7 +178,10 @@ class Solving:
         choices = [group.spots] if group is not None else []
         choices += [narrow.best.spots] if narrow.best is not None else []
         if not choices:
-            return None
+            forced = self._forced(plucks)
+            if forced is None:
+                return None
+            choices.append(forced)
         best = max(choices, key=lambda spots: worth_of(self.problem, spots))
         return _Group(plucks=plucks, spots=best, bound=bound, is_best=False)
 
@@ -232,6 +235,17 @@ class Solving:
         plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
         spots = fitted(self.problem, plucks, chosen)
         if spots is None:
+            forced = self._forced(plucks)
+            spots = None if forced is None else fitted(self.problem, plucks, forced)
+        if spots is None:
             return Impossible(plucks=plucks)
         worth = worth_of(self.problem, spots)
         return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
+
+    def _forced(self, plucks: IntArray) -> tuple[int, ...] | None:
+        """Spots for those of the plucks that must sound, whatever they cost to find; None where there are none.
+
+        Rulings are followed or refused for what is true, so no budget that others spent ends this.
+        """
+        forced = plucks[self.problem.must_sound[plucks]]
+        return best_coupled(self.problem, forced, Budget()).spots if len(forced) else ()

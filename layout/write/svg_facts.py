@@ -152,14 +152,19 @@ def _of_the_disc(plan: CutPlan, laid_out: LaidOut) -> list[Fact]:
     ]
 
 
+NOT_ASKED = ("outside-passage", "ruled-out", "past-the-turn")
+
+
 def _of_the_tune(plan: CutPlan, laid_out: LaidOut) -> list[Fact]:
     arrangement = laid_out.arrangement
     kept = sum(len(notes) for notes in arrangement.notes)
-    reasons = Counter(left.reason for left in arrangement.left_out)
+    # What the maker left out, or the turn, is not asked of the comb; the report counts alike.
+    reasons = Counter(left.reason for left in arrangement.left_out if left.reason not in NOT_ASKED)
+    asked = kept + reasons.total()
     left_out = ", ".join(f"{count} {reason.replace('-', ' ')}" for reason, count in reasons.most_common())
     semitones = arrangement.transposed_semitones
     return [
-        ("Notes", f"{kept} of {laid_out.score.note_count} kept, on {laid_out.disc.projection_count} projections"),
+        ("Notes", f"{kept} of {asked} asked for kept, on {laid_out.disc.projection_count} projections"),
         ("Left out", left_out or "none"),
         ("Transposed", f"{semitones:+d} semitones".replace("-", "−") if semitones else "not at all"),
         ("Speed", "as written" if arrangement.speed_factor == 1 else f"{arrangement.speed_factor:.4g} × as written"),

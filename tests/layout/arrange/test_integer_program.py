@@ -100,17 +100,6 @@ def test_a_search_without_time_says_that_it_is_not_finished() -> None:
     assert not IntegerProgram(worth, rows).solve(most_nodes=100_000, most_s=0.0).finished
 
 
-def test_a_solution_to_begin_with_is_never_lost() -> None:
-    worth, rows = a_hard_one(1, 200)
-    best = IntegerProgram(worth, rows).solve(most_nodes=100_000, most_s=None)
-    assert best.ones is not None
-
-    begun = IntegerProgram(worth, rows).solve(most_nodes=0, most_s=None, start=best.ones)
-
-    assert begun.ones is not None
-    assert worth[begun.ones].sum() == worth[best.ones].sum()
-
-
 def test_nothing_is_written_while_solving() -> None:
     # In a process of its own: what a library writes past Python's own streams is seen there too.
     program = (

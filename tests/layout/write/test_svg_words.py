@@ -93,7 +93,7 @@ def test_title_and_verdict_can_be_read_at_400_pixels(findings: tuple[Finding, ..
 def test_the_facts_say_what_was_kept_and_why_the_rest_was_not() -> None:
     shown = " ".join(texts_of(svg_of(THREE_LANCES)))
 
-    assert "3 of 4 kept, on 3 projections" in shown
+    assert "3 of 4 asked for kept, on 3 projections" in shown
     assert "1 no such pitch" in shown
     assert "−3 semitones" in shown
     assert "1.25 × as written" in shown
