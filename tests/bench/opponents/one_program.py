@@ -8,6 +8,8 @@ comes, but quiet and to a gap of nothing, so that the answer is the same.
 """
 
 from collections import defaultdict
+from collections.abc import Sequence
+from itertools import pairwise
 from typing import Literal, NamedTuple
 
 import highspy
@@ -18,6 +20,8 @@ from layout.arrange.problem import Problem
 
 NS_PER_MS = 1_000_000
 Conflicts = Literal["cliques", "pairs"]
+
+Terms = tuple[float, list[tuple[int, float]]]  # at most, and the columns with their factors
 
 LESS_THAN_ONE_GAP = 0.5  # worths are whole
 
@@ -85,6 +89,18 @@ def solve_as_one(problem: Problem, conflicts: Conflicts) -> Answer:
 
     For problems without extra plucks, without spread chords and without costs of ringing.
     """
+    return _solved([_program(problem, conflicts)])
+
+
+def solve_all_as_one(problems: Sequence[Problem], conflicts: Conflicts) -> Answer:
+    """The best of several problems, of which one is to be chosen, by one program that chooses it as well.
+
+    One column more for every problem, of which one is at one; a spot counts only where its problem's is.
+    """
+    return _solved([_program(problem, conflicts) for problem in problems])
+
+
+def _program(problem: Problem, conflicts: Conflicts) -> _Program:
     program = _Program(problem)
     for pluck in range(problem.pluck_count):
         spots = range(int(problem.first_spot[pluck]), int(problem.first_spot[pluck + 1]))
@@ -93,7 +109,7 @@ def solve_as_one(problem: Problem, conflicts: Conflicts) -> Answer:
     _add_tracks(program, conflicts)
     _add_webs(program)
     _add_loads(program)
-    return _solved(program)
+    return program
 
 
 def _add_tracks(program: _Program, conflicts: Conflicts) -> None:
@@ -169,26 +185,57 @@ def _add_loads(program: _Program) -> None:
         raise ValueError("spread chords are not in this program: choose a movement whose drive carries the piece")
 
 
-def _solved(program: _Program) -> Answer:
-    problem, rows = program.problem, program.rows
-    spots, moments = problem.spot_count, len(program.bounds_ms)
+def _solved(programs: Sequence[_Program]) -> Answer:
+    """The best of the programs: side by side in one model, with a column each to choose by where they are several."""
+    worth: list[float] = []
+    low: list[float] = []
+    high: list[float] = []
+    whole: list[bool] = []
+    rows: list[Terms] = []
+    chosen: list[int] = []
+    for program in programs:
+        at, spots, moments = len(worth), program.problem.spot_count, len(program.bounds_ms)
+        worth += [*program.problem.worth.tolist(), *[0.0] * moments]
+        low += [*[0.0] * spots, *(least for least, _ in program.bounds_ms)]
+        high += [*[1.0] * spots, *(most for _, most in program.bounds_ms)]
+        whole += [*[True] * spots, *[False] * moments]
+        rows += [(most, [(at + column, factor) for column, factor in terms]) for most, terms in program.rows]
+        if len(programs) > 1:
+            chosen.append(len(worth))
+            worth, low, high, whole = [*worth, 0.0], [*low, 0.0], [*high, 1.0], [*whole, True]
+            first = program.problem.first_spot.tolist()
+            for begin, end in pairwise(first):
+                if end > begin:
+                    rows.append((0.0, [*[(at + spot, 1.0) for spot in range(begin, end)], (chosen[-1], -1.0)]))
+    if chosen:
+        rows.append((1.0, [(column, 1.0) for column in chosen]))
+    proved, value = _run(_model((worth, low, high, whole), rows))
+    return Answer(value, proved, len(worth), len(rows))
+
+
+def _model(columns: tuple[list[float], list[float], list[float], list[bool]], rows: list[Terms]) -> highspy.HighsLp:
+    worth, low, high, whole = columns
     model = highspy.HighsLp()
-    model.num_col_, model.num_row_ = spots + moments, len(rows)
+    model.num_col_, model.num_row_ = len(worth), len(rows)
     model.sense_ = highspy.ObjSense.kMaximize
-    model.col_cost_ = np.concatenate([problem.worth, np.zeros(moments)]).astype(np.float64)
-    model.col_lower_ = np.array([0.0] * spots + [low for low, _ in program.bounds_ms])
-    model.col_upper_ = np.array([1.0] * spots + [high for _, high in program.bounds_ms])
-    model.integrality_ = [highspy.HighsVarType.kInteger] * spots + [highspy.HighsVarType.kContinuous] * moments
+    model.col_cost_, model.col_lower_, model.col_upper_ = np.array(worth, float), np.array(low), np.array(high)
+    kinds = highspy.HighsVarType
+    model.integrality_ = [kinds.kInteger if one else kinds.kContinuous for one in whole]
     model.row_lower_ = np.full(len(rows), -highspy.kHighsInf)
     model.row_upper_ = np.array([most for most, _ in rows])
     model.a_matrix_.format_ = highspy.MatrixFormat.kRowwise
     model.a_matrix_.start_ = np.concatenate([[0], np.cumsum([len(terms) for _, terms in rows])]).astype(np.int32)
     model.a_matrix_.index_ = np.array([column for _, terms in rows for column, _ in terms], dtype=np.int32)
     model.a_matrix_.value_ = np.array([factor for _, terms in rows for _, factor in terms])
+    return model
+
+
+def _run(model: highspy.HighsLp) -> tuple[bool, int]:
+    """Whether the program was solved to its end, and what it is worth."""
     highs = highspy.Highs()  # type: ignore[no-untyped-call]  # the library's own gap
     for name, value in {"output_flag": False, "mip_rel_gap": 0.0, "mip_abs_gap": LESS_THAN_ONE_GAP}.items():
         highs.setOptionValue(name, value)
     highs.passModel(model)
     highs.run()
     proved = highs.getModelStatus() == highspy.HighsModelStatus.kOptimal
-    return Answer(round(highs.getInfo().objective_function_value), proved, spots + moments, len(rows))
+    return proved, round(highs.getInfo().objective_function_value)
