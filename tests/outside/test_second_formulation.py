@@ -18,7 +18,7 @@ from tests.outside.posed import posed, spacing_on
 # Every piece on a disc as a whole, however fast.
 FIT = {"mode": "fit", "least": 0.25, "most": 8}
 
-# Spread over movements and kinds of music; those that CP-SAT proves within a second or so.
+# Spread over movements and kinds of music; those that CP-SAT proves within a few seconds.
 PLAIN = [
     ("bach chorale 66.6", "tarnlight-17"),
     ("bach chorale 269", "fernhollow-31"),
@@ -47,6 +47,14 @@ PLAIN = [
     ("forest flower fling", "mossbrook-67"),
     ("liverpool hornpipe", "tarnlight-17"),
     ("amateur hornpipe", "fernhollow-31"),
+    ("schubert lindenbaum", "tarnlight-17"),
+    ("joplin rag", "tarnlight-17"),
+    ("handel sarabande", "tarnlight-17"),
+    ("haydn presto", "tarnlight-17"),
+    ("haydn finale", "tarnlight-17"),
+    ("mozart quartet finale", "tarnlight-17"),
+    ("wieck polonaise 1", "tarnlight-17"),
+    ("wieck polonaise 4", "tarnlight-17"),
 ]
 MOVED = [
     ("bach chorale 66.6", "tarnlight-17", "all"),
