@@ -12,8 +12,7 @@ from layout.arrange.coupled import worth_of
 from layout.arrange.loading import greatest_load
 from layout.arrange.loads import overloads
 from layout.arrange.nudging import nudged
-from layout.arrange.posing import NS_PER_S
-from layout.arrange.problem import Problem
+from layout.arrange.problem import NS_PER_S, Problem
 from layout.arrange.reasons import reasons_of
 from layout.arrange.searching import Found
 from layout.arrange.solving import Solved

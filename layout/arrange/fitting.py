@@ -54,7 +54,6 @@ class _Fitting:
         self._on_track: dict[int, list[int]] = defaultdict(list)
         self._spot_of: dict[int, int] = {}
         self._spread_of: dict[int, int] = {}  # by chord
-        self._company = _company(problem)
 
     @property
     def spots(self) -> tuple[int, ...]:
@@ -85,7 +84,7 @@ class _Fitting:
             return False
         if self._is_too_near(spot):
             return False
-        company = self._company[int(problem.track[spot])]
+        company = problem.company[int(problem.track[spot])]
         there = [one for track in company for one in self._on_track[track]]
         if isinstance(moments_kept(problem, [*there, spot]), Overrun):
             return False
@@ -115,15 +114,3 @@ class _Fitting:
         apart_ns = np.abs(problem.asked_ns[standing] - problem.asked_ns[spot])
         near = (apart_ns < near_ns) | (problem.turn_ns - apart_ns < near_ns)
         return not overloads(problem, standing[near])
-
-
-def _company(problem: Problem) -> list[list[int]]:
-    """For every track the tracks it may push or come too near to, itself included."""
-    root = list(range(len(problem.ringing_ns)))
-    for pair in problem.besides:
-        low, high = sorted((root[pair.inner_index], root[pair.outer_index]))
-        root = [low if one == high else one for one in root]
-    members: dict[int, list[int]] = defaultdict(list)
-    for track, one in enumerate(root):
-        members[one].append(track)
-    return [members[one] for one in root]

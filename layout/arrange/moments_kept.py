@@ -115,13 +115,9 @@ def overruns(problem: Problem, spots: Sequence[int]) -> list[Overrun]:
 
 def _companies(problem: Problem, spots: Sequence[int]) -> list[list[int]]:
     """Spots by track; those of tracks beside each other, directly or through others, together."""
-    root = list(range(len(problem.ringing_ns)))
-    for pair in problem.besides:
-        low, high = sorted((root[pair.inner_index], root[pair.outer_index]))
-        root = [low if one == high else one for one in root]
-    members: dict[int, list[int]] = defaultdict(list)
+    members: dict[tuple[int, ...], list[int]] = defaultdict(list)
     for spot in spots:
-        members[root[int(problem.track[spot])]].append(spot)
+        members[problem.company[int(problem.track[spot])]].append(spot)
     return list(members.values())
 
 

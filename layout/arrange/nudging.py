@@ -16,9 +16,7 @@ import numpy as np
 from layout.arrange.integer_program import Row
 from layout.arrange.linear_program import least_cost
 from layout.arrange.moments_kept import Moments, Push, moments_kept, pushes_of
-from layout.arrange.problem import Problem
-
-NS_PER_MS = 1_000_000
+from layout.arrange.problem import NS_PER_MS, Problem
 
 # What each millisecond of a nudge costs, from here on. Up to 6 ms nobody hears it (the just noticeable
 # difference for notes up to 240 ms apart: Friberg and Sundberg, JASA 98, 1995, from memory); up to

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.arrangement import NO_NOTE
-from layout.arrange.problem import NO_PLUCK
+from layout.arrange.problem import NO_PLUCK, NS_PER_MS
 from layout.arrange.rulings import Rulings
 from layout.arrange.weights import Weighed
 from layout.documents.settings import Settings
@@ -14,7 +14,6 @@ from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floa
 from layout.read.score import Score
 
 NO_TRACK = -1  # stands in an array of tracks where there is none
-NS_PER_MS = 1_000_000
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

@@ -6,7 +6,7 @@ import numpy as np
 
 from layout.arrange.comb import Comb
 from layout.arrange.plucks import NO_TRACK, Wanted
-from layout.arrange.problem import NO_PLUCK, Beside, Drive, Lift, Problem
+from layout.arrange.problem import NO_PLUCK, NS_PER_S, Beside, Drive, Lift, Problem
 from layout.arrange.weights import FADED_S
 from layout.documents.movement import Movement
 from layout.documents.settings import Settings
@@ -16,7 +16,6 @@ from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 OCTAVE = 12  # semitones
-NS_PER_S = 1_000_000_000
 LOAD_GRAINS = 1000  # a newton millimetre; loads are whole thousandths, rounded up
 
 # Edges may be this much nearer than their least angle: a repeat asked exactly at its least time is

@@ -25,6 +25,9 @@ import numpy as np
 
 from layout.mechanics.arrays import BoolArray, IntArray
 
+NS_PER_S = 1_000_000_000
+NS_PER_MS = 1_000_000
+
 NO_PLUCK = -1  # stands in an array of plucks where there is none
 NO_SPOT = -1  # stands in an array of spots where there is none
 
@@ -116,6 +119,16 @@ class Problem:
     def unspread_ns(self) -> IntArray:
         """Shape (m,). The moment each spot's pluck is asked for while its chord is not spread."""
         return np.asarray(self.asked_ns[self.first_spot[self.pluck]])
+
+    @cached_property
+    def company(self) -> tuple[tuple[int, ...], ...]:
+        """For every track the tracks it may push or come too near to, directly or through others, itself included."""
+        root = list(range(len(self.ringing_ns)))
+        for pair in self.besides:
+            low, high = sorted((root[pair.inner_index], root[pair.outer_index]))
+            root = [low if one == high else one for one in root]
+        members = {one: tuple(track for track, other in enumerate(root) if other == one) for one in set(root)}
+        return tuple(members[one] for one in root)
 
     @property
     def pluck_count(self) -> int:

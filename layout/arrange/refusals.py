@@ -9,7 +9,8 @@ from layout.arrange.clashes import clashing
 from layout.arrange.comb import Comb
 from layout.arrange.loads import loads_at, overloads
 from layout.arrange.plucks import Wanted
-from layout.arrange.posing import LOAD_GRAINS, NS_PER_S
+from layout.arrange.posing import LOAD_GRAINS
+from layout.arrange.problem import NS_PER_S
 from layout.arrange.problem import Problem as Posed
 from layout.arrange.reasons import Conflict, Standing
 from layout.arrange.rulings import Forced, Rulings, ruling_error

@@ -7,10 +7,8 @@ import numpy as np
 
 from layout.arrange.broken import broken_by
 from layout.arrange.loads import heavy_moments
-from layout.arrange.problem import NO_PLUCK, Problem
+from layout.arrange.problem import NO_PLUCK, NS_PER_MS, Problem
 from layout.mechanics.arrays import IntArray, frozen_ints
-
-NS_PER_MS = 1_000_000
 
 # How far either way of its moment a chord may be spread, as far as the nudge goes. Teeth load the disc for 20 to
 # 100 ms, so less than 10 ms relieves nothing; 50 ms is the most a nudge may be. The steps are our own.
@@ -74,10 +72,7 @@ def _same_spot(problem: Problem, spot: int, spread: int) -> int | None:
 def _near(problem: Problem, chosen: Mapping[int, int], chord: int) -> list[int]:
     """The chosen spots that a chord may disturb: on its tracks and those beside them, and those lifted with it."""
     mine = [spot for pluck, spot in chosen.items() if problem.chord[pluck] == chord]
-    tracks = {int(problem.track[spot]) for spot in mine}
-    beside = {(pair.inner_index, pair.outer_index) for pair in problem.besides}
-    while more := {track for pair in beside if tracks & set(pair) for track in pair} - tracks:
-        tracks |= more
+    tracks = {track for spot in mine for track in problem.company[int(problem.track[spot])]}
     widest_ns = problem.drive.widest_ns if problem.drive is not None else 0
     reach_ns = 2 * widest_ns + int((problem.latest_ns - problem.earliest_ns).max(initial=0))
     at_ns = int(problem.asked_ns[mine[0]])

@@ -11,14 +11,13 @@ from itertools import pairwise
 import numpy as np
 
 from layout.arrange.ornaments import ornaments
-from layout.arrange.plucks import NS_PER_MS, Wanted
+from layout.arrange.plucks import Wanted
+from layout.arrange.problem import NS_PER_MS, NS_PER_S
 from layout.arrange.weights import FADED_S, Weighed
 from layout.documents.settings import Settings
 from layout.documents.settings_writing import Writing
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats, frozen_ints
 from layout.read.score import Score
-
-NS_PER_S = 1000 * NS_PER_MS
 
 # Thousandths of the weight of the pluck, as far as two extra plucks are worth less than the least pluck asked for:
 # a long note of the melody is not repeated at the cost of a soft inner note.
