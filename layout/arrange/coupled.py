@@ -16,6 +16,10 @@ from layout.arrange.moments_kept import overruns
 from layout.arrange.problem import Problem
 from layout.mechanics.arrays import IntArray
 
+# Entries of the rows of one program. Real music makes programs of up to some ten thousand; one of several times
+# MOST_ENTRIES keeps HiGHS busy for minutes before its first node, where no budget of nodes can stop it.
+MOST_ENTRIES = 150_000
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Coupled:
@@ -41,7 +45,10 @@ def best_coupled(problem: Problem, plucks: IntArray, budget: Budget) -> Coupled:
         budget: What nodes and time are left; the nodes looked at are taken off.
     """
     columns = Columns(problem, plucks)
-    program = IntegerProgram(columns.worth, list(columns.rows()))
+    rows = list(columns.rows())
+    if sum(len(row.columns) for row in rows) > MOST_ENTRIES:
+        return Coupled(spots=None, worth=0, bound=columns.most)
+    program = IntegerProgram(columns.worth, rows)
     bound: int | None = None
     while True:
         answer = program.solve(most_nodes=budget.nodes_left, most_s=budget.seconds_left())
