@@ -7,7 +7,7 @@ from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
 
 NO_NOTE = -1  # stands in an array of note indices where there is none
 
-Stopped = Literal["nodes", "time"]
+Stopped = Literal["nodes", "time", "nudges"]
 
 LeftOutReason = Literal[
     "no-such-pitch",
@@ -40,7 +40,8 @@ class Worth:
         kept: Of the notes kept, each by how it is placed.
         bound: Nothing that was searched (transpositions, speeds, octaves, tracks, nudges) keeps more.
         proved: Whether the two meet.
-        stopped: What ended the search before it could prove more; None where it ran to its end.
+        stopped: What ended the search before it could prove more: the nodes it may try, its time limit, or nudges
+            that pile up more than the drive carries, so that the choice was made anew; None where it ran to its end.
     """
 
     kept: int

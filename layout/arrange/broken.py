@@ -4,7 +4,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from layout.arrange.loads import overloads
+from layout.arrange.loads import overloads, piled_up
 from layout.arrange.moments_kept import Overrun, moments_kept
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import Problem
@@ -17,7 +17,7 @@ def broken_by(problem: Problem, spots: Sequence[int]) -> list[tuple[int, ...]]:
     is broken.
     """
     chosen = np.array(spots, dtype=np.int64)
-    found = breaches(problem, spots) + overloads(problem, chosen)
+    found = breaches(problem, spots) + overloads(problem, chosen) + piled_up(problem, chosen)
     if not found:
         kept = moments_kept(problem, spots)
         if isinstance(kept, Overrun):

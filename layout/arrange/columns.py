@@ -3,7 +3,7 @@
 One column for every spot, one for every spread of a chord, one for every ring that costs. Rows:
 at most one spot of a pluck; of spots so near on a track that each pushes the next past its window,
 only as many as the stretch holds (one or two from the start, more when a solution breaks it);
-webs; loads at every asked moment; extra plucks with their own; one spread of a chord.
+webs; loads at every asked moment, and what nudges pile up; extra plucks with their own; one spread of a chord.
 """
 
 from collections import defaultdict
@@ -73,6 +73,7 @@ class Columns:
         if problem.drive is not None:
             for spots, loads in hard_moments(problem, self._spots):
                 yield Row(columns=[column[spot] for spot in spots], coefficients=loads, most=problem.drive.limit)
+        yield from self._piled_rows()
         yield from self._spread_rows()
 
     def cut(self, overrun: Overrun) -> Row:
@@ -182,6 +183,12 @@ class Columns:
         found = {(int(problem.chord[problem.pluck[s]]), int(problem.spread[s])) for s in self._spots.tolist()}
         several = {chord for chord, spread in found if spread}
         return sorted(one for one in found if one[0] in several)
+
+    def _piled_rows(self) -> Iterator[Row]:
+        for pile in self._problem.piled:
+            columns = [self._column[spot] for spot in pile if spot in self._column]
+            if len(columns) == len(pile):
+                yield Row(columns=columns, most=len({int(self._problem.pluck[spot]) for spot in pile}) - 1)
 
     def _spread_rows(self) -> Iterator[Row]:
         problem = self._problem

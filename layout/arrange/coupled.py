@@ -36,17 +36,20 @@ class Coupled:
     bound: int | None
 
 
-def best_coupled(problem: Problem, plucks: IntArray, budget: Budget) -> Coupled:
+def best_coupled(
+    problem: Problem, plucks: IntArray, budget: Budget, *, most_entries: int | None = MOST_ENTRIES
+) -> Coupled:
     """The best choice for these plucks, by every rule among them.
 
     Args:
         problem: The rules.
         plucks: The group, rising.
         budget: What nodes and time are left; the nodes looked at are taken off.
+        most_entries: A program of more is not begun, and nothing found; None for one of any size.
     """
     columns = Columns(problem, plucks)
     rows = list(columns.rows())
-    if sum(len(row.columns) for row in rows) > MOST_ENTRIES:
+    if most_entries is not None and sum(len(row.columns) for row in rows) > most_entries:
         return Coupled(spots=None, worth=0, bound=columns.most)
     program = IntegerProgram(columns.worth, rows)
     bound: int | None = None

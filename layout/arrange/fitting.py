@@ -10,7 +10,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from layout.arrange.broken import breaches
-from layout.arrange.loads import overloads
+from layout.arrange.loads import overloads, piled_up
 from layout.arrange.moments_kept import Overrun, moments_kept
 from layout.arrange.problem import NO_PLUCK, Problem
 from layout.mechanics.arrays import IntArray
@@ -113,4 +113,4 @@ class _Fitting:
         standing = np.array([*self._spot_of.values(), spot], dtype=np.int64)
         apart_ns = np.abs(problem.asked_ns[standing] - problem.asked_ns[spot])
         near = (apart_ns < near_ns) | (problem.turn_ns - apart_ns < near_ns)
-        return not overloads(problem, standing[near])
+        return not overloads(problem, standing[near]) and not piled_up(problem, standing)

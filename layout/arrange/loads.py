@@ -59,6 +59,16 @@ def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
     return found
 
 
+def piled_up(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
+    """The chosen spots of every `piled` set of the problem of which every pluck is chosen."""
+    found, spots = [], set(chosen.tolist()) if problem.piled else set()
+    for pile in problem.piled:
+        there = tuple(spot for spot in pile if spot in spots)
+        if {int(problem.pluck[spot]) for spot in there} == {int(problem.pluck[spot]) for spot in pile}:
+            found.append(there)
+    return found
+
+
 def loads_at(problem: Problem, drive: Drive, spots: IntArray, at_ns: int) -> tuple[list[int], list[int]]:
     """The spots whose teeth are lifted at a moment, and how much they load the disc then."""
     return _lifted_at(problem, drive, spots[np.argsort(problem.asked_ns[spots], kind="stable")], at_ns)

@@ -11,7 +11,9 @@ every pluck, so that the worth is greatest and
 3. no two spots of `Beside` tracks are asked within a forbidden stretch of each other;
 4. at no asked moment do the teeth of all spots load the disc beyond the limit, every pluck counted
    at its asked moment;
-5. all spots of one `chord` have the same `spread`: it is played together, or spread by one step.
+5. all spots of one `chord` have the same `spread`: it is played together, or spread by one step;
+6. of no `piled` set of spots does every pluck have its spot in the set: nudges would bring them nearer
+   to each other than the drive carries. Such sets are found in choices that keep all else, and added.
 
 A spot loses its `ringing_cost` where one of an earlier pluck on its track is asked less than the track's
 `ringing_ns` before, chords unspread. Times are nanoseconds, loads thousandths of a newton millimetre, worths those
@@ -95,6 +97,7 @@ class Problem:
         turn_ns: One turn.
         besides: The tracks that may come too near to each other.
         drive: The load limit, or None where none is kept.
+        piled: Sets of spots, by pluck, in none of which every pluck must sound; empty when a problem is posed.
     """
 
     must_sound: BoolArray
@@ -114,6 +117,7 @@ class Problem:
     turn_ns: int
     besides: tuple[Beside, ...]
     drive: Drive | None
+    piled: tuple[tuple[int, ...], ...] = ()
 
     @cached_property
     def unspread_ns(self) -> IntArray:
@@ -129,6 +133,13 @@ class Problem:
             root = [low if one == high else one for one in root]
         members = {one: tuple(track for track, other in enumerate(root) if other == one) for one in set(root)}
         return tuple(members[one] for one in root)
+
+    def equals(self, spot: int) -> list[int]:
+        """The spots of the same pluck that differ from this one by their track alone, as far as worth and spread go."""
+        pluck = int(self.pluck[spot])
+        mine = np.arange(self.first_spot[pluck], self.first_spot[pluck + 1])
+        like = (self.worth[mine] == self.worth[spot]) & (self.spread[mine] == self.spread[spot])
+        return [int(one) for one in mine[like]]
 
     @property
     def pluck_count(self) -> int:

@@ -8,9 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.arrangement import LeftOutReason
-from layout.arrange.broken import breaches
 from layout.arrange.comb import Comb
-from layout.arrange.loads import overloads
+from layout.arrange.loads import overloads, piled_up
+from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import Problem
 from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import FULL_TURN_RAD
@@ -61,7 +61,7 @@ class Standing:
 
     def _beside_it(self, spot: int) -> Iterator[Conflict]:
         problem = self._problem
-        for one, two in breaches(problem, [*self._near(spot, self._web_ns()), spot]):
+        for one, two in near_pairs(problem, np.array([*self._near(spot, self._web_ns()), spot])):
             if spot in (one, two):
                 other = two if one == spot else one
                 apart_ns = abs(int(problem.asked_ns[other] - problem.asked_ns[spot]))
@@ -77,7 +77,8 @@ class Standing:
         drive, track = self._problem.drive, int(self._problem.track[spot])
         if drive is None:
             return None
-        if not overloads(self._problem, np.array([*self._near(spot, 2 * drive.widest_ns), spot])):
+        lifted = np.array([*self._near(spot, 2 * drive.widest_ns), spot])
+        if not overloads(self._problem, lifted) and not piled_up(self._problem, np.append(self._spots, spot)):
             return None
         return Conflict(
             track_index=track,

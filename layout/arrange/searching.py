@@ -226,6 +226,11 @@ def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: B
         kept=best.kept,
         bound=max(bound, best.kept),
         tried=tuple(list(told.values())[:MOST_TOLD]),
-        # Where nothing has run out, a group was too large for one program.
-        stopped=(budget.stopped or "nodes") if bound > best.kept else None,
+        stopped=_what_stopped(best, budget) if bound > best.kept else None,
     )
+
+
+def _what_stopped(best: _Candidate, budget: Budget) -> Stopped:
+    """Why the best is not proved; where nothing else tells, a group was too large for one program."""
+    piled = any(problem.piled for problem in best.problems)
+    return budget.stopped or ("nudges" if piled else "nodes")

@@ -4,10 +4,14 @@ Parts solved alone are worth at least as much as any choice for all of them: lea
 allows more. So their sum is a bound, and where their choices break none of the rules between parts
 they are the best. Where they do, the parts that break a rule are put into one group, which an integer
 program solves by all rules; and so on, until nothing is broken.
+
+Last, the choice is nudged to its moments. Where that piles up more than the drive carries, the plucks
+at fault are forbidden together and the choice is made anew. The bound stays what it was before: other
+moments than those the nudging finds might have done.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -16,7 +20,9 @@ from layout.arrange.budget import Budget
 from layout.arrange.by_time import Best, Stuck, best_by_time, narrow_by_time
 from layout.arrange.coupled import best_coupled, worth_of
 from layout.arrange.fitting import fitted
+from layout.arrange.loads import piled_up
 from layout.arrange.parts import parts_of
+from layout.arrange.playing import played
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
@@ -118,7 +124,7 @@ class Solving:
             self.some_parts(budget)
         if self.impossible is not None:
             return self.impossible
-        while broken := broken_by(self.problem, self._chosen()):
+        while broken := self._broken():
             if not self._widened and self.problem.drive is not None:
                 self._widen()
                 continue
@@ -138,6 +144,25 @@ class Solving:
         worth = worth_of(self.problem, spots)
         return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
 
+    def _broken(self) -> list[tuple[int, ...]]:
+        chosen = self._chosen()
+        return broken_by(self.problem, chosen) or self._piled(chosen)
+
+    def _piled(self, chosen: Sequence[int]) -> list[tuple[int, ...]]:
+        """The spots of a choice that its nudges bring too near for the drive; forbidden together from now on.
+
+        Those that must all sound are left: a ruling is not refused for moments that might have done.
+        """
+        problem = self.problem
+        if problem.drive is None:
+            return []
+        piles = []
+        for heavy in played(problem, chosen).too_heavy:
+            if not problem.must_sound[problem.pluck[list(heavy)]].all():
+                piles.append(tuple(sorted({equal for spot in heavy for equal in problem.equals(spot)})))
+        self.problem = replace(problem, piled=(*problem.piled, *piles))
+        return piled_up(self.problem, np.array(chosen, dtype=np.int64))
+
     def _widen(self) -> None:
         """Let chords too heavy for the drive be spread; what is chosen so far stays as it is."""
         self._widened = True
@@ -148,9 +173,11 @@ class Solving:
         for group in self._groups:
             group.spots = tuple(now[list(group.spots)].tolist())
         self._alone = {pluck: int(now[spot]) for pluck, spot in self._alone.items()}
-        self.problem = problem
+        self.problem = replace(problem, piled=tuple(tuple(now[list(pile)].tolist()) for pile in problem.piled))
 
     def _lower_bound(self) -> None:
+        if self.problem.piled:
+            return  # what follows is less than all there might be
         alone = int(self.problem.worth[list(self._alone.values())].sum())
         self.bound = min(self.bound, self._open + alone + sum(group.bound for group in self._groups))
 
@@ -178,10 +205,10 @@ class Solving:
         choices = [group.spots] if group is not None else []
         choices += [narrow.best.spots] if narrow.best is not None else []
         if not choices:
-            forced = self._forced(plucks)
-            if forced is None:
+            by_hand = self._by_hand(plucks, ())
+            if by_hand is None:
                 return None
-            choices.append(forced)
+            choices.append(by_hand)
         best = max(choices, key=lambda spots: worth_of(self.problem, spots))
         return _Group(plucks=plucks, spots=best, bound=bound, is_best=False)
 
@@ -191,11 +218,11 @@ class Solving:
             return None
         spots = found.spots
         if spots is None or found.worth < found.bound:
-            by_hand = fitted(self.problem, plucks, spots or ())
-            if by_hand is not None and (spots is None or worth_of(self.problem, by_hand) > found.worth):
+            by_hand = self._by_hand(plucks, spots or ())
+            if by_hand is None:
+                return None
+            if spots is None or worth_of(self.problem, by_hand) > found.worth:
                 spots = by_hand
-        if spots is None:
-            return None
         is_best = worth_of(self.problem, spots) == found.bound
         return _Group(plucks=plucks, spots=spots, bound=found.bound, is_best=is_best)
 
@@ -233,19 +260,23 @@ class Solving:
     def _as_it_stands(self, chosen: Sequence[int]) -> Solved | Impossible:
         """A choice so far, less what breaks a rule."""
         plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
-        spots = fitted(self.problem, plucks, chosen)
-        if spots is None:
-            forced = self._forced(plucks)
-            spots = None if forced is None else fitted(self.problem, plucks, forced)
+        spots = self._by_hand(plucks, chosen)
+        while spots is not None and self._piled(spots):
+            spots = self._by_hand(plucks, spots)
         if spots is None:
             return Impossible(plucks=plucks)
         worth = worth_of(self.problem, spots)
         return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
 
-    def _forced(self, plucks: IntArray) -> tuple[int, ...] | None:
-        """Spots for those of the plucks that must sound, whatever they cost to find; None where there are none.
+    def _by_hand(self, plucks: IntArray, preferred: Sequence[int]) -> tuple[int, ...] | None:
+        """A choice that keeps every rule, near to the one preferred; None where there is none at all.
 
-        Rulings are followed or refused for what is true, so no budget that others spent ends this.
+        Rulings are followed or refused for what is true, so where putting spots down one after the
+        other finds no room for those that must sound, they are looked for whatever that costs.
         """
+        spots = fitted(self.problem, plucks, preferred)
         forced = plucks[self.problem.must_sound[plucks]]
-        return best_coupled(self.problem, forced, Budget()).spots if len(forced) else ()
+        if spots is not None or not len(forced):
+            return spots
+        found = best_coupled(self.problem, forced, Budget(), most_entries=None)
+        return None if found.spots is None else fitted(self.problem, plucks, found.spots) or found.spots

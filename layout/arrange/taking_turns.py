@@ -60,16 +60,8 @@ class _Board:
         self.at_ns[best] = at_ns
 
     def _equals(self, spot: int) -> list[int]:
-        problem = self._problem
-        pluck = int(problem.pluck[spot])
-        return [
-            one
-            for one in range(int(problem.first_spot[pluck]), int(problem.first_spot[pluck + 1]))
-            if one != spot
-            and problem.worth[one] == problem.worth[spot]
-            and problem.spread[one] == problem.spread[spot]
-            and int(problem.track[one]) not in self._beside
-        ]
+        equals = self._problem.equals(spot)
+        return [one for one in equals if one != spot and int(self._problem.track[one]) not in self._beside]
 
     def _rank(self, spot: int, at_ns: int, now: int) -> tuple[bool, float, int, int]:
         """Spots without room last, then by when the track last sounded; of unused tracks the fastest."""

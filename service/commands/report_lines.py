@@ -9,7 +9,11 @@ from service.commands.output import aligned
 WIDTH = 100  # characters; what the tables need, and no more than most terminals show
 INDENT = "              "  # under the words that follow a label
 VOICES = {"highest": "top line", "lowest": "bass", "inner": "inner", "melody": "melody", "total": "total"}
-STOPPED = {"nodes": "the search ended at the most nodes it may try", "time": "the search ended at its time limit"}
+STOPPED = {
+    "nodes": "the search ended at the most nodes it may try",
+    "time": "the search ended at its time limit",
+    "nudges": "more would be too heavy for the drive once it is nudged",
+}
 NOTHING = "-"
 Report = Mapping[str, Any]  # content of report.json
 
