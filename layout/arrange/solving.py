@@ -125,7 +125,7 @@ class Solving:
         if self.impossible is not None:
             return self.impossible
         while broken := self._broken():
-            if not self._widened and self.problem.drive is not None:
+            if not self._widened and self.problem.drive is not None and budget.stopped != "time":
                 self._widen()
                 continue
             if budget.spent:
@@ -261,12 +261,23 @@ class Solving:
         """A choice so far, less what breaks a rule."""
         plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
         spots = self._by_hand(plucks, chosen)
-        while spots is not None and self._piled(spots):
-            spots = self._by_hand(plucks, spots)
         if spots is None:
             return Impossible(plucks=plucks)
+        while piled := self._piled(spots):
+            spots = self._without_lightest(spots, piled)
         worth = worth_of(self.problem, spots)
         return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
+
+    def _without_lightest(self, chosen: Sequence[int], piled: Sequence[Sequence[int]]) -> tuple[int, ...]:
+        """A choice less the lightest pluck of each of these sets that may go, and what belongs to it."""
+        problem = self.problem
+        gone: set[int] = set()
+        for spots in piled:
+            may_go = [spot for spot in spots if not problem.must_sound[problem.pluck[spot]]]
+            if not gone & set(problem.pluck[list(spots)].tolist()):
+                gone.add(int(problem.pluck[min(may_go, key=lambda spot: (int(problem.worth[spot]), spot))]))
+        left = [spot for spot in chosen if int(problem.pluck[spot]) not in gone]
+        return tuple(spot for spot in left if int(problem.parent[problem.pluck[spot]]) not in gone)
 
     def _by_hand(self, plucks: IntArray, preferred: Sequence[int]) -> tuple[int, ...] | None:
         """A choice that keeps every rule, near to the one preferred; None where there is none at all.
