@@ -65,6 +65,10 @@ def test_a_share_is_none_or_all_only_where_it_is(part: int, whole: int, text: st
             {"kept": 601_140, "bound": 611_807, "proved": False, "stopped": "time"},
             "601140 of at most 611807 (98.3 %); the search ended at its time limit",
         ),
+        (
+            {"kept": 601_140, "bound": 611_807, "proved": False, "stopped": "nudges"},
+            "601140 of at most 611807 (98.3 %); more would be too heavy for the drive once it is nudged",
+        ),
         ({"kept": 0, "bound": 0, "proved": True, "stopped": None}, "0, proved best: nothing searched keeps more"),
     ],
 )
