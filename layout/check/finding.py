@@ -42,6 +42,26 @@ class Code(StrEnum):
     SLIT_TOO_NARROW = "slit-too-narrow"
     HOLE_TOO_SMALL = "hole-too-small"
     MARGIN_UNSURE = "margin-unsure"
+    # as a real part: strength, forming, cutting
+    LINE_CUT_THROUGH = "line-cut-through"
+    RING_CUT_THROUGH = "ring-cut-through"
+    SMALL_FOR_SHEET = "small-for-sheet"
+    BEND_TOO_TIGHT = "bend-too-tight"
+    FOLDS_ALONG_ROLLING = "folds-along-rolling"
+    KERF_CLOSES = "kerf-closes"
+    LEAD_HAS_NO_ROOM = "lead-has-no-room"
+    HIT_OVER_OPENING = "hit-over-opening"
+    FOOT_ON_FORMED = "foot-on-formed"
+    PRESS_TOO_WEAK = "press-too-weak"
+    LABEL_HIDDEN = "label-hidden"
+    # timing and drive
+    TIMING_TOO_COARSE = "timing-too-coarse"
+    START_TOO_SHORT = "start-too-short"
+    DRIVE_OVERLOADED = "drive-overloaded"
+    TURN_DIFFERS = "turn-differs"
+    TEMPO_SAGS = "tempo-sags"
+    WINDING_TOO_SHORT = "winding-too-short"
+    CLEARING_TURN = "clearing-turn"
     # read back from a drawing
     UNKNOWN_CUT = "unknown-cut"
     CUT_TWICE = "cut-twice"
@@ -83,7 +103,7 @@ class Finding:
         message: One sentence for a person, with numbers and units.
         measured: The number found, in `unit`; None where nothing is measured.
         limit: The number it is held against, in `unit`; None where there is none.
-        unit: "mm", "s", "deg" or "".
+        unit: "mm", "s", "ms", "deg", "N", "N mm", "%", "turns" or "".
         at: Where.
         remedy: What a person can do about it.
     """

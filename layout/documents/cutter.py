@@ -4,6 +4,18 @@ from typing import Annotated, Literal, Self
 
 from pydantic import Field, model_validator
 
+from layout.documents.making import (
+    Bridges,
+    FeatureRules,
+    Feeds,
+    Foot,
+    LeadIn,
+    NetSection,
+    Press,
+    Rates,
+    Springback,
+    ToleranceClass,
+)
 from layout.documents.reading import (
     Angle,
     Identifier,
@@ -44,6 +56,9 @@ class Fold(Part):
     slit: Literal["channel", "centre-line"]
     slit_width_mm: Length | None = None
     relief_width_mm: Length | None = None
+    relief_ends: Literal["square", "round"] = "square"
+    least_inside_radius_mm: Length | None = None
+    springback: Springback | None = None
 
     @model_validator(mode="after")
     def _channel_has_a_width(self) -> Self:
@@ -72,6 +87,7 @@ class Tool(Part):
     edge_ahead_mm: Offset
     tab_width_mm: Length | None = None
     tab_depth_mm: Length | None = None
+    foot: Foot | None = None
 
     @model_validator(mode="after")
     def _fields_of_its_kind(self) -> Self:
@@ -114,6 +130,17 @@ class Cutter(Part):
     fold: Fold | None = None
     tools: Annotated[tuple[Tool, ...], Field(max_length=MOST_TOOLS)] = ()
     layers: dict[str, Layer] = Field(default_factory=dict)
+    drawing_release: Literal["R2010", "R12"] = "R2010"
+    labels: bool = True
+    burr_side: Literal["label-side", "star-side"] | None = None
+    feeds: Feeds | None = None
+    rates: Rates | None = None
+    lead_in: LeadIn | None = None
+    bridges: Bridges | None = None
+    feature_rules: FeatureRules | None = None
+    net_section: NetSection | None = None
+    tolerance_class: ToleranceClass | None = None
+    press: Press | None = None
 
     @model_validator(mode="after")
     def _parts_of_its_kind(self) -> Self:
@@ -121,8 +148,12 @@ class Cutter(Part):
             raise ValueError("a punch press lances; leave fold out")
         if self.kind == "laser" and self.tools:
             raise ValueError("a laser has no tools; leave tools out")
-        if self.kerf_compensated:
-            raise ValueError("kerf_compensated true is not offered: outlines are finished edges; set it to false")
+        if self.kind == "laser" and self.press is not None:
+            raise ValueError("a laser is no press; leave press out")
+        if self.kind == "punch-press" and (self.lead_in is not None or self.bridges is not None):
+            raise ValueError("a punch press has no lead_in and no bridges; leave them out")
+        if self.kerf_compensated and (self.kind == "punch-press" or self.kerf_mm == 0):
+            raise ValueError("kerf_compensated true needs a laser with kerf_mm above 0")
         if self.fold is not None and self.fold.slit == "centre-line" and self.kerf_mm == 0:
             raise ValueError('slit "centre-line" needs kerf_mm above 0')
         numbers = [tool.tool for tool in self.tools]

@@ -11,6 +11,7 @@ from typing import Annotated, Literal, Self
 
 from pydantic import Discriminator, Field, PrivateAttr, Tag, field_validator, model_validator
 
+from layout.documents.drive import Drive
 from layout.documents.pitch import key_of
 from layout.documents.reading import (
     FULL_TURN_DEG,
@@ -57,7 +58,11 @@ class Feature(Part):
 
 
 class DiscBlank(Part):
-    """The sheet the disc is made of, and what is cut in it beside the tune."""
+    """The sheet the disc is made of, and what is cut in it beside the tune.
+
+    `centre_hole_play_mm` is how much wider the hole is than the spindle; `rolled_along_deg` the
+    direction in which the sheet was rolled, seen from the label side.
+    """
 
     outer_diameter_mm: Length
     thickness_mm: Length
@@ -65,6 +70,10 @@ class DiscBlank(Part):
     centre_hole_mm: Length
     flatness_mm: LengthOrZero = 0.0
     run_out_mm: LengthOrZero = 0.0
+    centre_hole_play_mm: LengthOrZero | None = None
+    density_kg_m3: Positive | None = None
+    shear_strength_n_per_mm2: Positive | None = None
+    rolled_along_deg: Angle | None = None
     features: Annotated[tuple[Feature, ...], Field(max_length=MOST_ROWS)] = ()
 
 
@@ -115,22 +124,6 @@ class Projection(Part):
             if self.forming != "any":
                 raise ValueError("forming belongs to standing projections; leave it out for a slot")
         return self
-
-
-class TrainStage(Part):
-    """One turning part of the gear train, with its turns per turn of the disc."""
-
-    inertia_kg_m2: Positive
-    ratio: Positive
-
-
-class Drive(Part):
-    """What turns the disc. Every field is optional; what is not stated is not checked."""
-
-    torque_limit_nmm: Positive | None = None
-    surplus_torque_nmm: Positive | None = None
-    disc_inertia_kg_m2: Positive | None = None
-    train: Annotated[tuple[TrainStage, ...], Field(max_length=MOST_ROWS)] = ()
 
 
 class Track(Part):

@@ -89,6 +89,9 @@ class Settings(SettingsPart):
     title: Annotated[str, Field(min_length=1, max_length=80)] | None = None
     """The title lettered on the disc, 1 to 80 characters; null: the tune's own name."""
 
+    order: Annotated[str, Field(pattern=r"^[A-Za-z0-9][A-Za-z0-9 ./_-]{0,39}$")] | None = None
+    """The shop's order number, lettered on the disc: 1 to 40 letters, digits, spaces and . / _ -; null: none."""
+
     passage: Passage = Passage()
     """The part of the tune to use; the default is the whole tune from its first note on."""
 

@@ -7,6 +7,15 @@ from layout.documents import read_movement, shipped_movement, shipped_movement_i
 from layout.errors import DocumentError, NotShippedError
 from tests.layout.examples import document_with, movement_with
 
+OVERDRAWN = {
+    "elastic_modulus_n_per_mm2": 206_000,
+    "width_mm": 10,
+    "thickness_mm": 0.4,
+    "length_mm": 2000,
+    "wound_turns": 8,
+    "usable_turns": 9,
+}
+
 
 @pytest.mark.parametrize(
     ("movement_id", "tracks", "teeth", "first_mm", "last_mm"),
@@ -54,6 +63,10 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
     ("changes", "message"),
     [
         ({"format": "discwright-movement/2"}, r"/format: Input should be 'discwright-movement/1'"),
+        (
+            {"drive": {"winding": {"spring": OVERDRAWN, "barrel_to_disc": [4]}}},
+            "/drive/winding/spring: usable_turns cannot be above wound_turns",
+        ),
         ({"id": "Fern Hollow"}, r"/id: an id is a small letter followed by .*; got 'Fern Hollow'"),
         ({"revolution_s": None, "disc": []}, r"/disc: "),
         ({"damper_arc_mm": [1]}, r"/damper_arc_mm: a number is needed, got a list"),

@@ -26,6 +26,11 @@ BAR_REFUSED = [
 FIELDS: dict[str, tuple[Any, list[Any], list[tuple[Any, str]]]] = {
     "/format": ("discwright-settings/1", ["discwright-settings/1"], [("discwright-settings/2", "Input should be")]),
     "/title": (None, [None, "A", "A" * 80], [("", "at least 1 character"), ("A" * 81, "at most 80 characters")]),
+    "/order": (
+        None,
+        [None, "7", "A 12/3-b_c.d", "A" * 40],
+        [("", "match pattern"), ("-7", "match pattern"), ("A" * 41, "match pattern"), ("ä", "match pattern")],
+    ),
     "/passage/from_s": (None, [None, 0, 86_400], [(-1, "equal to 0, got -1"), (86_401, "86400, got 86401")]),
     "/passage/to_s": (
         None,
