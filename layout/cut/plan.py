@@ -72,6 +72,32 @@ class Drawing:
     comments: tuple[str, ...]
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CutPath:
+    """What the machine travels to cut and mark one disc.
+
+    Attributes:
+        cut_length_mm: Along everything a laser cuts, leads included; 0 for what a press strikes.
+        mark_length_mm: Along everything on MARKS.
+        rapid_length_mm: Between the end of one cut or mark and the start of the next, in straight lines; from and
+            back to the disc centre.
+        pierce_count: Cuts begun; 0 on a press.
+        hit_count: Strikes of a press; 0 on a laser.
+        turned_rad: What a press's table turns from hit to hit.
+        slid_mm: What its slide moves from hit to hit.
+        tool_change_count: Tools taken up after the first.
+    """
+
+    cut_length_mm: float
+    mark_length_mm: float
+    rapid_length_mm: float
+    pierce_count: int
+    hit_count: int
+    turned_rad: float
+    slid_mm: float
+    tool_change_count: int
+
+
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class CutPlan:
     """The disc as it is cut, and the record of it.
@@ -89,6 +115,7 @@ class CutPlan:
             working edge (laser).
         tool: The press tool of every hit; "" on a laser.
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
+        path: What the machine travels; None where it is not worked out.
     """
 
     title: str
@@ -101,3 +128,4 @@ class CutPlan:
     at_mm: FloatArray
     tool: str
     part: str = ""
+    path: CutPath | None = None
