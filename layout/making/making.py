@@ -1,0 +1,94 @@
+"""What making one disc takes: lengths, strokes, masses, time and price.
+
+A figure that cannot be told is None, and `not_stated` names the fields of the documents that would tell it.
+"""
+
+from dataclasses import dataclass
+from decimal import Decimal
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class TimeParts:
+    """Seconds of the machine, part by part.
+
+    Attributes:
+        cut_s: Along what is cut.
+        mark_s: Along what is marked.
+        rapid_s: Between cuts and marks.
+        pierce_s: Piercing.
+        hit_s: Strikes of a press.
+        turn_s: Turning a press's table from hit to hit.
+        slide_s: Moving its slide from hit to hit.
+        tool_change_s: Taking up tools after the first.
+
+    A part is 0 where there is nothing of its kind, None where there is and its speed is not stated.
+    """
+
+    cut_s: float | None = None
+    mark_s: float | None = None
+    rapid_s: float | None = None
+    pierce_s: float | None = None
+    hit_s: float | None = None
+    turn_s: float | None = None
+    slide_s: float | None = None
+    tool_change_s: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PriceLine:
+    """One line of a price: amount = quantity × rate, rounded to the currency's smallest coin.
+
+    Attributes:
+        name: "setup", "machine time", "pierces", "hits" or "sheet".
+        quantity: How many of `per`, as a person would write it, so that the line can be worked again by hand.
+        per: What is counted: "disc", "min", "pierce", "hit" or "kg".
+        rate: What the shop asks for one of them.
+        amount: What the line comes to.
+    """
+
+    name: str
+    quantity: Decimal
+    per: str
+    rate: Decimal
+    amount: Decimal
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Making:
+    """What the machine does to make one disc, and what that takes.
+
+    Attributes:
+        cut_length_mm: Along all that is cut, leads included; None where the path is not worked out, as the
+            next six.
+        mark_length_mm: Along all that is marked.
+        rapid_length_mm: Between cuts and marks.
+        pierce_count: Cuts begun.
+        hit_count: Strikes of a press.
+        hit_force_n: Of the strongest hit; None on a laser, and where the shear strength is not stated.
+        stripping_force_n: That pulls the punch out again after it; None as `hit_force_n`.
+        blank_mass_kg: The round blank before anything is cut in it; None where the density is not stated.
+        disc_mass_kg: The disc as it is played: the blank less all that falls out; None as the blank's.
+        time_parts: The machine's time, part by part.
+        time_s: Their sum; None where one of them is. Loading, unloading and breaking out are not in it.
+        price_lines: One for each rate the shop states and whose quantity can be told.
+        total: The lines' exact sum; None where a stated rate has no quantity, or no rate is stated.
+        currency: Of the amounts, by ISO 4217; None where no rates are stated.
+        not_stated: Fields of the documents that would be needed for a figure that is missing, such as
+            "cutter.feeds.cut_mm_per_s"; empty where all can be told.
+    """
+
+    cut_length_mm: float | None = None
+    mark_length_mm: float | None = None
+    rapid_length_mm: float | None = None
+    pierce_count: int | None = None
+    hit_count: int | None = None
+    hit_force_n: float | None = None
+    stripping_force_n: float | None = None
+    blank_mass_kg: float | None = None
+    disc_mass_kg: float | None = None
+    time_parts: TimeParts = TimeParts()
+    time_s: float | None = None
+    price_lines: tuple[PriceLine, ...] = ()
+    total: Decimal | None = None
+    currency: str | None = None
+    not_stated: tuple[str, ...] = ()
