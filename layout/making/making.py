@@ -73,6 +73,8 @@ class Making:
         price_lines: One for each rate the shop states and whose quantity can be told.
         total: The lines' exact sum; None where a stated rate has no quantity, or no rate is stated.
         currency: Of the amounts, by ISO 4217; None where no rates are stated.
+        currency_decimals: How many decimals the amounts are rounded to; None where there are no rates, and where
+            the currency's smallest unit is not known here: amounts are then exact, and not rounded.
         not_stated: Fields of the documents that would be needed for a figure that is missing, such as
             "cutter.feeds.cut_mm_per_s"; empty where all can be told.
     """
@@ -91,4 +93,5 @@ class Making:
     price_lines: tuple[PriceLine, ...] = ()
     total: Decimal | None = None
     currency: str | None = None
+    currency_decimals: int | None = None
     not_stated: tuple[str, ...] = ()
