@@ -148,6 +148,7 @@ def lay_out_discs(
             report=report_on(score, arrangement, disc),
             disc_number=number,
             disc_count=len(discs),
+            order_number=settings.order,
         )
         for number, (arrangement, disc) in enumerate(zip(arrangements, discs, strict=True), start=1)
     )

@@ -27,6 +27,7 @@ class LaidOut:
         report: What the disc keeps of the tune, and what that cost.
         disc_number: Which disc of its set it is, from 1.
         disc_count: How many discs the tune is cut into; 1 for one alone.
+        order_number: The shop's, as the settings state it; None for none.
     """
 
     title: str
@@ -39,6 +40,7 @@ class LaidOut:
     report: Report
     disc_number: int = 1
     disc_count: int = 1
+    order_number: str | None = None
 
     @property
     def good_to_cut(self) -> bool:
