@@ -12,6 +12,7 @@ from layout.check.blank import (
 )
 from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_has_the_tool, slits_are_wide_enough
 from layout.check.finding import Code, Finding, Level, Place, stands
+from layout.check.forming import bends_are_wide_enough, bends_lie_across_the_rolling
 from layout.check.music import WholeTune, music_fits_the_turn, something_plays
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
 from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
@@ -34,6 +35,8 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     press_has_the_tool,
     slits_are_wide_enough,
     holes_are_large_enough,
+    bends_are_wide_enough,
+    bends_lie_across_the_rolling,
     star_clears_the_disc,
     star_is_reached,
     step_ends_at_the_next_point,

@@ -66,6 +66,8 @@ class Making:
         hit_count: Strikes of a press.
         hit_force_n: Of the strongest hit; None on a laser, and where the shear strength is not stated.
         stripping_force_n: That pulls the punch out again after it; None as `hit_force_n`.
+        fold_to_rad: The angle the tabs are bent to, so that they stand at 90° once let go; None where nothing is
+            folded, and where the springback is not stated.
         blank_mass_kg: The round blank before anything is cut in it; None where the density is not stated.
         disc_mass_kg: The disc as it is played: the blank less all that falls out; None as the blank's.
         time_parts: The machine's time, part by part.
@@ -86,6 +88,7 @@ class Making:
     hit_count: int | None = None
     hit_force_n: float | None = None
     stripping_force_n: float | None = None
+    fold_to_rad: float | None = None
     blank_mass_kg: float | None = None
     disc_mass_kg: float | None = None
     time_parts: TimeParts = TimeParts()

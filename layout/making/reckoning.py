@@ -1,5 +1,7 @@
 """From a disc and its cut plan to what making it takes."""
 
+import math
+
 from layout.cut.plan import CutPath, CutPlan
 from layout.documents.cutter import Cutter
 from layout.documents.making import Feeds
@@ -7,6 +9,7 @@ from layout.making.making import Making, TimeParts
 from layout.making.pricing import MINOR_UNIT_DECIMALS, Quantities, price_lines, total_of
 from layout.making.timing import feeds_not_stated, sum_s, time_parts
 from layout.making.weighing import blank_mass_kg, disc_mass_kg
+from layout.mechanics.bending import over_bend_rad
 from layout.place.disc import Disc
 
 _NO_FEEDS = Feeds()
@@ -38,6 +41,7 @@ def making_of(disc: Disc, plan: CutPlan) -> Making:
         rapid_length_mm=None if path is None else path.rapid_length_mm,
         pierce_count=quantities.pierce_count,
         hit_count=quantities.hit_count,
+        fold_to_rad=_fold_to_rad(disc),
         blank_mass_kg=quantities.blank_mass_kg,
         disc_mass_kg=disc_mass_kg(disc),
         time_parts=parts,
@@ -50,8 +54,17 @@ def making_of(disc: Disc, plan: CutPlan) -> Making:
     )
 
 
+def _fold_to_rad(disc: Disc) -> float | None:
+    fold = disc.cutter.fold
+    if disc.pattern.making != "fold" or fold is None or fold.springback is None:
+        return None
+    return over_bend_rad(math.radians(fold.springback.opens_deg))
+
+
 def _not_stated(disc: Disc, path: CutPath | None, parts: TimeParts) -> tuple[str, ...]:
     names = [] if path is None else list(feeds_not_stated(parts))
+    if disc.pattern.making == "fold" and _fold_to_rad(disc) is None:
+        names.append("cutter.fold.springback")
     if disc.movement.disc.density_kg_m3 is None:
         names.append("movement.disc.density_kg_m3")
     return (*names, *_rates_not_stated(disc.cutter))

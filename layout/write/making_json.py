@@ -1,5 +1,6 @@
 """making.json: what making a disc takes, for programs. Fields may be added, never renamed."""
 
+import math
 from dataclasses import asdict
 from typing import Any
 
@@ -38,6 +39,7 @@ def write_making(making: Making, fingerprint: str) -> bytes:
             "hit_count": making.hit_count,
             "hit_force_n": _rounded(making.hit_force_n),
             "stripping_force_n": _rounded(making.stripping_force_n),
+            "fold_to_deg": _rounded(None if making.fold_to_rad is None else math.degrees(making.fold_to_rad)),
             "blank_mass_kg": _rounded(making.blank_mass_kg, DECIMALS_KG),
             "disc_mass_kg": _rounded(making.disc_mass_kg, DECIMALS_KG),
             "time_s": _rounded(making.time_s),

@@ -49,7 +49,8 @@ def plan_of(disc: Disc, path: CutPath | None) -> CutPlan:
 
 def made(path: CutPath | None, changes: dict[str, Any], movement: Movement = STEEL, base: Cutter = LASER) -> Making:
     """The making of a disc with one projection on a cutter that states these feeds and rates, and no others."""
-    disc = disc_of(movement, [(1, 1.0)], cutter_with({"feeds": None, "rates": None} | changes, base))
+    bare = {"feeds": None, "rates": None} | ({"fold/springback": {"opens_deg": 1.5}} if base.fold else {})
+    disc = disc_of(movement, [(1, 1.0)], cutter_with(bare | changes, base))
     return making_of(disc, plan_of(disc, path))
 
 
@@ -291,3 +292,21 @@ def test_the_total_is_the_exact_sum_and_each_line_within_half_a_coin(
     half_a_coin = Decimal(1).scaleb(-(making.currency_decimals or 0)) / 2
     for line in making.price_lines:
         assert abs(line.amount - line.quantity * line.rate) <= half_a_coin
+
+
+def test_a_fold_is_told_with_the_angle_it_is_bent_to() -> None:
+    bent_rad = made(NOTHING, {"fold/springback": {"opens_deg": 2}}).fold_to_rad
+
+    assert bent_rad is not None
+    assert math.degrees(bent_rad) == pytest.approx(92.0)
+
+
+def test_a_springback_that_is_not_stated_is_named_where_something_is_folded_and_only_there() -> None:
+    rigid = {"fold/springback": None}
+    slots = movement_with({"disc/density_kg_m3": 7850}, SHIPPED[2].model_dump(mode="json", exclude_none=True))
+
+    folded, slotted, lanced = made(NOTHING, rigid), made(NOTHING, rigid, slots), made(NOTHING, {}, base=PRESS)
+
+    assert (folded.fold_to_rad, slotted.fold_to_rad, lanced.fold_to_rad) == (None, None, None)
+    assert "cutter.fold.springback" in folded.not_stated
+    assert "cutter.fold.springback" not in (*slotted.not_stated, *lanced.not_stated)

@@ -1,6 +1,7 @@
 """making.json read back: every figure with its unit, amounts as decimal text, what is missing named."""
 
 import json
+import math
 from decimal import Decimal
 
 from layout.making.making import Making, PriceLine, TimeParts
@@ -10,7 +11,7 @@ from layout.write.making_json import write_making
 FINGERPRINT = "0123456789abcdef"
 FIELDS = [
     *("format", "fingerprint", "engine_version", "cut_length_mm", "mark_length_mm", "rapid_length_mm"),
-    *("pierce_count", "hit_count", "hit_force_n", "stripping_force_n", "blank_mass_kg", "disc_mass_kg"),
+    *("pierce_count", "hit_count", "hit_force_n", "stripping_force_n", "fold_to_deg", "blank_mass_kg", "disc_mass_kg"),
     *("time_s", "time_parts", "currency", "currency_decimals", "price_lines", "total", "not_stated"),
 ]
 PRICED = Making(
@@ -19,6 +20,7 @@ PRICED = Making(
     rapid_length_mm=500.0,
     pierce_count=5,
     hit_count=0,
+    fold_to_rad=math.radians(91.5),
     blank_mass_kg=0.1775619,
     disc_mass_kg=0.17,
     time_parts=TimeParts(cut_s=20.0, rapid_s=0.6),
@@ -42,6 +44,7 @@ def test_the_fields_stand_in_their_order_with_what_the_making_holds() -> None:
     assert (record["cut_length_mm"], record["mark_length_mm"], record["rapid_length_mm"]) == (1000.0, 12.5, 500.0)
     assert (record["pierce_count"], record["hit_count"], record["blank_mass_kg"]) == (5, 0, 0.1775619)
     assert (record["time_s"], record["hit_force_n"], record["stripping_force_n"]) == (None, None, None)
+    assert record["fold_to_deg"] == 91.5
     assert record["time_parts"]["cut_s"] == 20.0
     assert record["time_parts"]["pierce_s"] is None
     assert record["not_stated"] == ["cutter.feeds.pierce_s"]
