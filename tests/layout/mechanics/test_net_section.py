@@ -1,0 +1,195 @@
+"""The least metal left: discs worked out by hand, and a slow opponent that samples rays and rings with shapely."""
+
+import math
+from dataclasses import replace
+
+import numpy as np
+import pytest
+import shapely
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from layout.documents import Cutter, Movement
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.net_section import LINE_GRAIN_MM, RING_GRAIN_RAD, MetalLeft, metal_left
+from layout.place.disc import Disc
+from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+
+# The press's lance L12 leaves a rectangle: 1.6 across, from 1.85 behind the working edge to 0.45 ahead of it.
+BEHIND_MM, AHEAD_MM, HALF_MM = 1.85, 0.45, 0.8
+FULL_TURN_RAD = 2 * math.pi
+
+
+def left_on(disc: Disc) -> MetalLeft:
+    left = metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad)
+    assert left is not None
+    return left
+
+
+def widest_angle(radius_mm: float) -> tuple[float, float]:
+    """The widest a lanced opening is on a ring, and that ring: the innermost that is cut on both short sides."""
+    ring_mm = math.hypot(radius_mm - HALF_MM, BEHIND_MM)
+    return math.asin(BEHIND_MM / ring_mm) + math.asin(AHEAD_MM / ring_mm), ring_mm
+
+
+def test_one_opening_is_cut_most_through_its_outer_far_corner() -> None:
+    left = left_on(disc_of(PLAIN, [(1, 10.0)], PRESS))
+
+    # the band: from the long side at 50 − 0.8 to the far corner at √(50.8² + 1.85²) = 50.8337
+    assert (left.from_mm, left.to_mm) == pytest.approx((49.2, math.hypot(50.8, 1.85)), abs=1e-9)
+    # the ray through that corner leans most of those that cross both long sides: 1.6 · sec atan(1.85/50.8)
+    lean = math.atan(1.85 / 50.8)
+    assert left.line_mm == pytest.approx(math.hypot(50.8, 1.85) - 49.2 - 1.6 / math.cos(lean), abs=LINE_GRAIN_MM)
+    assert left.line_share == pytest.approx(0.0326 / 1.6337, abs=0.001)
+    # the working edge lies at 90 degrees (30 + 6 · 10); the disc turns clockwise, so behind it is anticlockwise
+    assert left.line_angle_rad == pytest.approx(math.pi / 2 + lean, abs=1e-6)
+    widest_rad, ring_mm = widest_angle(50.0)
+    assert left.ring_share == pytest.approx(1 - widest_rad / FULL_TURN_RAD, abs=RING_GRAIN_RAD)
+    assert left.ring_radius_mm == pytest.approx(ring_mm, abs=1e-6)
+
+
+def test_a_ring_of_equal_openings_leaves_a_turn_less_all_of_them() -> None:
+    # 60 openings on track 2 (60 mm), one a second: 60 · 2.3/59.2 is about 2.33 of the 6.28 of a turn
+    left = left_on(disc_of(PLAIN, [(2, float(second)) for second in range(60)], PRESS))
+
+    widest_rad, ring_mm = widest_angle(60.0)
+    assert left.ring_share == pytest.approx(1 - 60 * widest_rad / FULL_TURN_RAD, abs=60 * RING_GRAIN_RAD)
+    assert left.ring_share == pytest.approx(1 - 60 * 2.3 / 59.23 / FULL_TURN_RAD, abs=1e-3)
+    assert left.ring_radius_mm == pytest.approx(ring_mm, abs=1e-6)
+
+
+def test_a_row_of_openings_on_one_ray_is_cut_by_all_of_them() -> None:
+    left = left_on(disc_of(PLAIN, [(1, 10.0), (2, 10.0), (3, 10.0), (1, 30.0)], PRESS))
+
+    # the working edges lie on one ray; the ray that leans most and is in all three meets the outermost corner
+    lean = math.atan(1.85 / 100.8)
+    band_mm = math.hypot(100.8, 1.85) - 49.2
+    assert left.line_mm == pytest.approx(band_mm - 3 * 1.6 / math.cos(lean), abs=LINE_GRAIN_MM)
+    assert left.line_angle_rad == pytest.approx(math.pi / 2 + lean, abs=1e-6)
+    # two openings on track 1 are the most on any ring
+    assert left.ring_share == pytest.approx(1 - 2 * widest_angle(50.0)[0] / FULL_TURN_RAD, abs=2 * RING_GRAIN_RAD)
+
+
+def test_openings_on_top_of_each_other_are_counted_once() -> None:
+    alone = left_on(disc_of(PLAIN, [(1, 10.0)], PRESS))
+    doubled = left_on(disc_of(PLAIN, [(1, 10.0), (1, 10.0), (1, 10.0)], PRESS))
+
+    assert doubled.line_mm == pytest.approx(alone.line_mm, abs=LINE_GRAIN_MM)
+    assert doubled.ring_share == pytest.approx(alone.ring_share, abs=RING_GRAIN_RAD)
+
+
+def test_a_ring_cut_right_round_leaves_nothing() -> None:
+    # at 50 mm an opening of 2.3 mm takes 2.6 degrees: 0.3 s apart, 1.8 degrees, they run into each other
+    left = left_on(disc_of(PLAIN, [(1, 0.3 * place) for place in range(200)], PRESS))
+
+    assert left.ring_share == 0.0
+
+
+def test_an_opening_across_the_start_of_the_turn_is_seen_whole() -> None:
+    # at 55 s the working edge lies at 0 degrees, where the angles begin again
+    left = left_on(disc_of(PLAIN, [(1, 55.0)], PRESS))
+    elsewhere = left_on(disc_of(PLAIN, [(1, 10.0)], PRESS))
+
+    assert left.line_mm == pytest.approx(elsewhere.line_mm, abs=LINE_GRAIN_MM)
+    assert left.ring_share == pytest.approx(elsewhere.ring_share, abs=RING_GRAIN_RAD)
+    assert left.line_angle_rad == pytest.approx(math.atan(1.85 / 50.8), abs=1e-6)
+
+
+def test_a_disc_without_openings_has_no_net_section() -> None:
+    disc = disc_of(PLAIN, [])
+
+    assert metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad) is None
+
+
+def test_an_opening_over_the_centre_has_no_net_section() -> None:
+    movement = movement_with({"tracks/0/radius_mm": 0.7, "disc/centre_hole_mm": 0.5})
+    disc = disc_of(movement, [(1, 10.0), (2, 10.0)], PRESS)
+
+    assert metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad) is None
+
+
+def outline(disc: Disc, place: int) -> shapely.Polygon:
+    """One opening as shapely draws it; round ends in 64 steps a quarter, wrong by 0.65 · (1 − cos 0.7°) = 0.05 µm."""
+    radius_mm, angle_rad = disc.radius_mm[[place]], disc.edge_angle_rad[[place]]
+    if disc.pattern.making == "slot":
+        [core] = on_disc_mm(disc.pattern.core_points_mm, radius_mm, angle_rad, disc.turning.direction)
+        return shapely.LineString(core).buffer(disc.pattern.core_round_mm, quad_segs=64)
+    [points] = on_disc_mm(disc.pattern.opening.points_mm, radius_mm, angle_rad, disc.turning.direction)
+    return shapely.Polygon(points)
+
+
+def sampled_line_mm(whole: shapely.Geometry, angle_rad: float, band_mm: tuple[float, float]) -> float:
+    along = np.array([math.cos(angle_rad), math.sin(angle_rad)])
+    ray = shapely.LineString([band_mm[0] * along, band_mm[1] * along])
+    return float(ray.length - ray.intersection(whole).length)
+
+
+def sampled_ring_share(whole: shapely.Geometry, radius_mm: float, count: int) -> float:
+    at = (np.arange(count) + 0.5) * FULL_TURN_RAD / count
+    return 1 - float(np.mean(shapely.contains_xy(whole, radius_mm * np.cos(at), radius_mm * np.sin(at))))
+
+
+TUNES = st.lists(st.tuples(st.integers(1, 8), st.floats(0, 4)), min_size=1, max_size=12)
+WIDE_RELIEF = cutter_with({"fold/relief_width_mm": 0.6, "fold/fold_side": "ahead"})
+
+
+@settings(max_examples=40, deadline=None)
+@given(
+    movement=st.sampled_from(SHIPPED),
+    cutter=st.sampled_from([LASER, PRESS, WIDE_RELIEF]),
+    plucks=TUNES,
+    rays=st.lists(st.floats(-0.2, 0.8), min_size=30, max_size=30),
+)
+def test_no_sampled_ray_or_ring_leaves_less_and_those_told_leave_as_much(
+    movement: Movement, cutter: Cutter, plucks: list[tuple[int, float]], rays: list[float]
+) -> None:
+    disc = disc_of(movement, plucks, cutter)
+
+    left = left_on(disc)
+
+    whole = shapely.union_all([outline(disc, place) for place in range(len(plucks))])
+    shapely.prepare(whole)
+    corners = shapely.get_coordinates(whole)
+    band_mm = (left.from_mm, left.to_mm)
+    assert np.hypot(*corners.T).max() == pytest.approx(left.to_mm, abs=1e-4)
+    # rays near every corner, and anywhere about the openings
+    first_rad = float(disc.edge_angle_rad[0])
+    near = np.arctan2(corners[:, 1], corners[:, 0])[::7]
+    asked = [*(near - 1e-6), *(near + 1e-6), *(first_rad + ray for ray in rays)]
+    assert min(sampled_line_mm(whole, angle, band_mm) for angle in asked) >= left.line_mm - 2 * LINE_GRAIN_MM
+    # at the place told the cover may end, so it is met on one of the two sides
+    sides = [sampled_line_mm(whole, left.line_angle_rad + step, band_mm) for step in (-1e-8, 0.0, 1e-8)]
+    assert min(sides) == pytest.approx(left.line_mm, abs=2 * LINE_GRAIN_MM)
+    steps = 20_000
+    edge_share = 2 * len(plucks) / steps  # each edge may fall either side of a step
+    rings_mm = [*np.hypot(*corners.T)[::11], *np.linspace(*band_mm, 12)]
+    assert min(sampled_ring_share(whole, ring, steps) for ring in rings_mm) >= left.ring_share - edge_share
+    told = [sampled_ring_share(whole, left.ring_radius_mm + step, steps) for step in (-1e-7, 1e-7)]
+    assert min(told) == pytest.approx(left.ring_share, abs=edge_share)
+
+
+@settings(max_examples=30, deadline=None)
+@given(movement=st.sampled_from(SHIPPED), plucks=TUNES, turn_rad=st.floats(0, 6))
+def test_turning_the_disc_changes_neither_minimum(
+    movement: Movement, plucks: list[tuple[int, float]], turn_rad: float
+) -> None:
+    disc = disc_of(movement, plucks)
+    turned = replace(disc, edge_angle_rad=np.mod(disc.edge_angle_rad + turn_rad, FULL_TURN_RAD))
+
+    before, after = left_on(disc), left_on(turned)
+
+    assert after.line_mm == pytest.approx(before.line_mm, abs=LINE_GRAIN_MM)
+    assert after.ring_share == pytest.approx(before.ring_share, abs=RING_GRAIN_RAD)
+
+
+@settings(max_examples=30, deadline=None)
+@given(plucks=TUNES, more=st.tuples(st.integers(1, 8), st.floats(0, 4)))
+def test_one_more_opening_in_the_band_never_leaves_more(
+    plucks: list[tuple[int, float]], more: tuple[int, float]
+) -> None:
+    ends = [(1, 50.0), (8, 55.0)]  # they hold the band where it is
+    before = left_on(disc_of(SHIPPED[0], [*ends, *plucks]))
+    after = left_on(disc_of(SHIPPED[0], [*ends, *plucks, more]))
+
+    assert after.line_mm <= before.line_mm + LINE_GRAIN_MM
+    assert after.ring_share <= before.ring_share + RING_GRAIN_RAD
