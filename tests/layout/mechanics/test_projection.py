@@ -9,7 +9,7 @@ import shapely
 
 from layout.mechanics.bending import bend_allowance_mm, neutral_fibre_factor
 from layout.mechanics.frame import on_disc_mm
-from layout.mechanics.projection import Pattern, pattern_of
+from layout.mechanics.projection import Pattern, Shape, pattern_of
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, movement_with
 
 FERNHOLLOW, MOSSBROOK, TARNLIGHT = SHIPPED
@@ -109,6 +109,82 @@ def test_an_open_slit_runs_half_a_kerf_outside_the_tab(side: str) -> None:
     opening = shapely.Polygon(pattern.opening.points_mm)
     assert swept.difference(opening.buffer(1e-9)).area == pytest.approx(0.0, abs=1e-9)
     assert opening.difference(swept).area == pytest.approx(1.2 * 1.8745447, abs=1e-6)
+
+
+def traced(points_mm: Any, bulges: Any) -> shapely.Polygon:
+    """An outline with half circles, those in 2000 pieces, outwards of an anticlockwise outline."""
+    ring: list[complex] = []
+    corners = points_mm @ np.array([1, 1j])
+    for start, end, bulge in zip(corners, np.roll(corners, -1), bulges, strict=True):
+        steps = np.arange(2000 if bulge else 1) / 2000
+        ring += list((start + end) / 2 + (start - end) / 2 * np.exp(1j * math.pi * steps) if bulge else [start])
+    return shapely.Polygon([(z.real, z.imag) for z in ring])
+
+
+ROUND = [{}, {"fold/relief_width_mm": 0.6}, {"fold/relief_mm": 0.0}, {"fold/relief_width_mm": 0.42}]
+
+
+@pytest.mark.parametrize("side", ["behind", "ahead"])
+@pytest.mark.parametrize("changes", ROUND, ids=["as wide as the slit", "wider", "of no length", "stated"])
+def test_a_round_relief_runs_on_straight_and_ends_in_a_half_circle(side: str, changes: dict[str, Any]) -> None:
+    changes = changes | {"fold/fold_side": side}
+    square = pattern_of(FERNHOLLOW, cutter_with(changes))
+    round_ended = pattern_of(FERNHOLLOW, cutter_with(changes | {"fold/relief_ends": "round"}))
+
+    radius_mm = changes.get("fold/relief_width_mm", 0.42) / 2
+    before, after = shapely.Polygon(square.opening.points_mm), traced(*corners_of(round_ended.opening))
+    # Two half discs are cut beyond what square ends cut; they reach their radius farther past the tangent line.
+    assert after.is_valid
+    assert after.exterior.is_ccw
+    assert after.area - before.area == pytest.approx(math.pi * radius_mm**2, abs=1e-6)
+    assert before.difference(after.buffer(1e-9)).area == pytest.approx(0.0, abs=1e-9)
+    (low, _, high, _), (round_low, _, round_high, _) = before.bounds, after.bounds
+    grown = (round_high - high, low - round_low) if side == "behind" else (low - round_low, round_high - high)
+    assert grown == pytest.approx((radius_mm, 0.0), abs=1e-6)
+    # What is cut is still the opening less the tab, 1.2 by 1.8745447 folded behind.
+    assert round_ended.cut is not None
+    slit = traced(*corners_of(round_ended.cut))
+    assert slit.is_valid
+    assert slit.exterior.is_ccw
+    assert after.difference(slit).area == pytest.approx(1.2 * 1.8745447, abs=1e-6)
+    assert slit.difference(after.buffer(1e-9)).area == pytest.approx(0.0, abs=1e-9)
+    assert round_ended.cut.points_mm[0] == pytest.approx(square.cut.points_mm[0] if square.cut else None)
+
+
+def corners_of(shape: Shape) -> tuple[Any, Any]:
+    return shape.points_mm, shape.bulges
+
+
+@pytest.mark.parametrize("changes", ROUND, ids=["as wide as the slit", "wider", "of no length", "stated"])
+def test_what_webs_are_measured_on_holds_the_round_reliefs_and_little_more(changes: dict[str, Any]) -> None:
+    pattern = pattern_of(FERNHOLLOW, cutter_with(changes | {"fold/relief_ends": "round"}))
+
+    core, opening = shapely.Polygon(pattern.core_points_mm), traced(*corners_of(pattern.opening))
+
+    # Pieces of 22.5 degrees outside a circle reach 1/cos(11.25 deg) = 1.0196 of its radius.
+    most_mm = 0.0196 * changes.get("fold/relief_width_mm", 0.42) / 2
+    assert core.is_valid
+    assert opening.difference(core).area == pytest.approx(0.0, abs=1e-9)
+    assert 0 < shapely.hausdorff_distance(core, opening) <= most_mm + 1e-5
+
+
+def test_square_reliefs_are_measured_as_they_are() -> None:
+    pattern = pattern_of(FERNHOLLOW, LASER)
+
+    assert np.array_equal(pattern.core_points_mm, pattern.opening.points_mm)
+
+
+def test_an_open_slit_ends_as_round_as_its_beam() -> None:
+    changes = {"fold/slit": "centre-line", "fold/slit_width_mm": None, "fold/relief_ends": "round"}
+    pattern = pattern_of(FERNHOLLOW, cutter_with(changes))
+    assert pattern.cut is not None
+
+    # A beam of 0.12 along the line; corners are drawn sharp, its ends are half circles.
+    line = shapely.LineString(pattern.cut.points_mm)
+    swept = line.buffer(0.06, quad_segs=500, join_style="mitre")
+    opening = traced(*corners_of(pattern.opening))
+    assert opening.difference(swept).area == pytest.approx(1.2 * 1.8745447, abs=1e-6)
+    assert swept.difference(opening).area == pytest.approx(0.0, abs=1e-6)
 
 
 def test_a_cut_starts_as_far_from_the_working_edge_as_it_can() -> None:

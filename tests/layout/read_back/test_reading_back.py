@@ -25,10 +25,12 @@ from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
 AHEAD_LASER = cutter_with({"fold/fold_side": "ahead"})
 OPEN_LASER = cutter_with({"fold/slit": "centre-line", "fold/slit_width_mm": None})
+ROUND_LASER = cutter_with({"fold/relief_ends": "round", "fold/relief_width_mm": 0.5})
 ROUND_SLOTS = movement_with(
     {"projection": {"kind": "slot", "width_mm": 2.0, "length_mm": 2.0}}, SHIPPED[2].model_dump(exclude_none=True)
 )
-CUTTERS = [LASER, PRESS, STAR_SIDE_LASER, AHEAD_LASER, OPEN_LASER]
+CUTTERS = [LASER, PRESS, STAR_SIDE_LASER, AHEAD_LASER, OPEN_LASER, ROUND_LASER]
+CUTTER_NAMES = ["laser", "press", "star side", "fold ahead", "open slit", "round reliefs"]
 
 
 def assert_same_disc(reading: Reading, disc: Disc, *, within_rad: float = 1e-9) -> None:
@@ -39,7 +41,9 @@ def assert_same_disc(reading: Reading, disc: Disc, *, within_rad: float = 1e-9) 
 
 
 @pytest.mark.parametrize("movement", [*SHIPPED, PLAIN, ROUND_SLOTS], ids=lambda movement: movement.title)
-@pytest.mark.parametrize("cutter", CUTTERS, ids=["laser", "press", "star side", "fold ahead", "open slit"])
+@pytest.mark.parametrize(
+    "cutter", CUTTERS, ids=["laser", "press", "star side", "fold ahead", "open slit", "round reliefs"]
+)
 def test_a_drawing_gives_back_track_and_angle_of_every_projection(movement: Movement, cutter: Cutter) -> None:
     disc = random_disc(movement, cutter, count=300)
 
