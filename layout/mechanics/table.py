@@ -1,0 +1,123 @@
+"""A press's rotary table and radial slide: what they travel from one strike to the next.
+
+A table driven through gears has backlash: it stands a little differently on the same angle as it came
+onto it from one side or the other. So it comes onto every angle from the same side, and where it must
+go back it goes a little too far and turns onto the angle again (common practice).
+
+Angles here are *forward* angles: they rise the way the table turns onto its strikes.
+"""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats
+
+TAKE_UP_RAD = math.radians(1.0)  # past the angle and back; common practice: more than any worm table's backlash
+HALF_TURN_RAD = math.pi
+FULL_TURN_RAD = 2 * math.pi
+_SAME_RAD = 1e-12  # rad; two angles nearer than this are one, but for rounding
+LONGEST_TICKS = 1e9  # ticks; as fine as the nanometre of our files on a disc of a metre, and sums fit 64 bits
+_SHARES = 1000  # of a tick; the shorter of two moves counts one of them, so that it decides only between equals
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class TableMoves:
+    """Where the table stands, strike by strike.
+
+    Attributes:
+        to_rad: Shape (n,). Forward angle of every strike, counted on over whole turns.
+        taken_up: Shape (n,). Whether the table goes TAKE_UP_RAD below the angle first, then onto it.
+    """
+
+    to_rad: FloatArray
+    taken_up: BoolArray
+
+    @property
+    def turned_rad(self) -> float:
+        """What the table turns from the first strike to the last, both ways counted."""
+        plain = float(np.abs(np.diff(self.to_rad)).sum())
+        return plain + 2 * TAKE_UP_RAD * int(self.taken_up[1:].sum())
+
+
+def table_moves(forward_rad: FloatArray, *, one_way: bool) -> TableMoves:
+    """The moves of a table that strikes at these angles in this order.
+
+    From one strike to the next it takes the shorter way round, forward where both are equal; so no
+    move is longer than half a turn, and a control that counts angles on and one that takes the
+    shortest way go the same way.
+
+    Args:
+        forward_rad: Shape (n,). Forward angles of the strikes, any whole turns; (0,) gives no moves.
+        one_way: Whether the table comes onto every angle forwards. It then takes up the backlash
+            before the first strike and after every move back; else never.
+    """
+    if not len(forward_rad):
+        return TableMoves(to_rad=frozen_floats([]), taken_up=np.zeros(0, dtype=np.bool_))
+    steps = np.mod(np.diff(forward_rad), FULL_TURN_RAD)
+    steps[steps > FULL_TURN_RAD - _SAME_RAD] = 0.0
+    steps = np.where(steps > HALF_TURN_RAD, steps - FULL_TURN_RAD, steps)
+    to_rad = frozen_floats(float(forward_rad[0]) + np.concatenate([[0.0], np.cumsum(steps)]))
+    return TableMoves(to_rad=to_rad, taken_up=one_way & np.concatenate([[True], steps < 0]))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Table:
+    """The strikes of one disc in whole ticks, so that the best order is the same on every machine.
+
+    A full turn, or the slide's way out to the outermost strike where that takes longer, is LONGEST_TICKS.
+
+    Attributes:
+        turn_ticks: Shape (n,). Forward angle of every strike, in [0, full_turn_ticks).
+        slide_ticks: Shape (n,). Where the slide stands.
+        full_turn_ticks: One turn of the table.
+        take_up_ticks: Turning TAKE_UP_RAD; 0 for a table that may come from either side.
+    """
+
+    turn_ticks: IntArray
+    slide_ticks: IntArray
+    full_turn_ticks: int
+    take_up_ticks: int
+
+    def cost(self, one: IntArray, two: IntArray) -> IntArray:
+        """What going from strikes `one` to strikes `two` costs; shapes as broadcast.
+
+        Table and slide move at once, so the longer of the two counts. The rest decides between equals.
+        """
+        forward = np.mod(self.turn_ticks[two] - self.turn_ticks[one], self.full_turn_ticks)
+        back = self.full_turn_ticks - forward
+        turn = np.where(2 * forward <= self.full_turn_ticks, forward, back + 2 * self.take_up_ticks)
+        slide = np.abs(self.slide_ticks[two] - self.slide_ticks[one])
+        return np.asarray(_SHARES * np.maximum(turn, slide) + np.minimum(turn, slide), dtype=np.int64)
+
+
+def table_of(
+    radius_mm: FloatArray,
+    forward_rad: FloatArray,
+    *,
+    one_way: bool,
+    turn_rad_per_s: float | None,
+    slide_mm_per_s: float | None,
+) -> Table:
+    """Strikes in ticks.
+
+    Args:
+        radius_mm: Shape (n,). Distance of each strike from the centre.
+        forward_rad: Shape (n,). Its forward angle.
+        one_way: As for `table_moves`.
+        turn_rad_per_s: Speed of the table; None where not stated.
+        slide_mm_per_s: Speed of the slide. Where either is not stated, ways are compared instead: the
+            slide's own, and what the outermost strike goes on its circle.
+    """
+    if turn_rad_per_s is None or slide_mm_per_s is None:
+        turn_rad_per_s, slide_mm_per_s = 1.0 / max(float(np.max(radius_mm, initial=0.0)), 1.0), 1.0
+    longest = max(FULL_TURN_RAD / turn_rad_per_s, float(np.max(radius_mm, initial=0.0)) / slide_mm_per_s)
+    per_rad, per_mm = LONGEST_TICKS / longest / turn_rad_per_s, LONGEST_TICKS / longest / slide_mm_per_s
+    full_turn = max(round(FULL_TURN_RAD * per_rad), 1)
+    return Table(
+        turn_ticks=np.rint(np.mod(forward_rad, FULL_TURN_RAD) * per_rad).astype(np.int64) % full_turn,
+        slide_ticks=np.rint(radius_mm * per_mm).astype(np.int64),
+        full_turn_ticks=full_turn,
+        take_up_ticks=round(TAKE_UP_RAD * per_rad) if one_way else 0,
+    )

@@ -1,0 +1,99 @@
+import math
+from functools import cache
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from layout.cut.striking import StrikePath, hit_order, hits_of, strike_path
+from layout.documents import Settings
+from layout.place.disc import Disc
+from layout.walk import lay_out
+from tests.layout.examples import PRESS, SHIPPED, cutter_with, disc_of, movement_with
+
+DEMO_TUNE = Path(__file__).parents[3] / "service" / "demo" / "tune.mid"
+every_shipped = pytest.mark.parametrize("name", [movement.id for movement in SHIPPED])
+
+
+@cache
+def demo_disc(name: str) -> Disc:
+    """The demo tune as the shipped press would make it for a shipped movement."""
+    [movement] = [movement for movement in SHIPPED if movement.id == name]
+    return lay_out(DEMO_TUNE.read_bytes(), movement, PRESS, Settings()).disc
+
+
+def seconds(path: StrikePath) -> float:
+    """Turning and sliding one after the other, at the shipped press's speeds: more than both at once."""
+    assert PRESS.feeds is not None
+    assert PRESS.feeds.turn_deg_per_s is not None
+    assert PRESS.feeds.slide_mm_per_s is not None
+    return math.degrees(path.turned_rad) / PRESS.feeds.turn_deg_per_s + path.slid_mm / PRESS.feeds.slide_mm_per_s
+
+
+@every_shipped
+def test_a_demo_disc_is_struck_with_less_than_a_third_of_the_moving_by_track_and_angle(name: str) -> None:
+    disc = demo_disc(name)
+
+    order = hit_order(disc)
+
+    by_track = np.lexsort((disc.edge_angle_rad, disc.track_index))
+    assert sorted(order.tolist()) == list(range(disc.projection_count))
+    # measured: between a fifth and an eighth of the time where both move at once
+    assert seconds(strike_path(disc, order)) < seconds(strike_path(disc, by_track)) / 3
+
+
+@every_shipped
+def test_no_foot_stands_on_formed_metal_of_a_demo_disc(name: str) -> None:
+    disc = demo_disc(name)
+    place = np.argsort(hit_order(disc))
+
+    standing, struck = hits_of(disc).feet_on_formed().T
+
+    assert (place[standing] > place[struck]).all()
+
+
+def test_the_same_disc_gives_the_same_order() -> None:
+    disc = demo_disc("fernhollow-31")
+
+    assert hit_order(disc).tolist() == hit_order(disc).tolist()
+
+
+def test_the_path_is_what_table_and_slide_move() -> None:
+    # a tool that strikes on the working edge itself; clockwise, so forward angles are those of the label side
+    tool = {"tools/0/edge_ahead_mm": 0, "press/turns_one_way": True}
+    movement = movement_with()
+    disc = disc_of(movement, [(1, 0.0), (2, 5.0), (3, 3.0)], cutter_with(tool, PRESS))
+
+    path = strike_path(disc, np.array([0, 1, 2]))
+
+    # 6 degrees a second: 30 on, 12 back, and a degree too far and on again; 50 to 60 to 100 mm
+    assert math.degrees(path.turned_rad) == pytest.approx(30 + 12 + 2 * 1.0)
+    assert path.slid_mm == pytest.approx(10 + 40)
+    assert path.tool_change_count == 0
+
+
+@pytest.mark.parametrize("plucks", [[], [(1, 0.0)]], ids=["none", "one"])
+def test_fewer_than_two_hits_move_nothing(plucks: list[tuple[int, float]]) -> None:
+    disc = disc_of(movement_with(), plucks, PRESS)
+
+    path = strike_path(disc, hit_order(disc))
+
+    assert (path.turned_rad, path.slid_mm) == (0.0, 0.0)
+
+
+@pytest.mark.parametrize("turns", ["clockwise", "anticlockwise"])
+def test_of_two_near_each_other_on_a_track_the_one_ahead_is_struck_first(turns: str) -> None:
+    # 3.5 mm apart; a foot 7 mm long reaches 3.5 mm from the strike point, which lies 0.7 mm behind the working edge.
+    # The tab ahead stands from 3.5 + 0.7 - 0.5 (the sheet) = 3.7 mm ahead of the strike behind it: clear.
+    # The tab behind stands from 3.5 - 0.7 = 2.8 mm behind the strike ahead: under it.
+    movement = movement_with({"turns": turns})
+    apart_s = 60 * 3.5 / (2 * math.pi * 50)
+    cutter = cutter_with({"tools/0/foot": {"length_mm": 7, "width_mm": 2}}, PRESS)
+    disc = disc_of(movement, [(1, 10.0), (1, 10.0 + apart_s)], cutter)
+
+    pairs = hits_of(disc).feet_on_formed().tolist()
+    order = hit_order(disc).tolist()
+
+    # The one ahead passes the row of star wheels first, so it sounds first: projection 0.
+    assert pairs == [[1, 0]]
+    assert order == [0, 1]

@@ -1,0 +1,141 @@
+import math
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from layout.mechanics.hit_order import length, shortest_order
+from layout.mechanics.table import Table, table_moves, table_of
+
+NOTHING_FIRST = np.zeros((0, 2), dtype=np.int64)
+places = st.lists(st.tuples(st.floats(20, 200), st.floats(0, 6.2)), max_size=14)
+
+
+def table_with(placed: list[tuple[float, float]], *, one_way: bool = True) -> Table:
+    """Strikes at these (radius in mm, forward angle in radians); 90 degrees and 150 mm a second."""
+    radius_mm, forward_rad = np.array(placed, dtype=float).reshape(-1, 2).T
+    return table_of(radius_mm, forward_rad, one_way=one_way, turn_rad_per_s=math.pi / 2, slide_mm_per_s=150.0)
+
+
+def least_by_trying_all(table: Table) -> int:
+    """The least any order costs, by the dynamic program over sets of Held and Karp (1962)."""
+    count = len(table.turn_ticks)
+    every = np.arange(count)
+    cost = table.cost(every[:, None], every[None, :]).tolist()
+    least = {(1 << one, one): 0 for one in range(count)}
+    for some in range(1, 1 << count):
+        inside = [one for one in range(count) if some >> one & 1]
+        if len(inside) > 1:
+            for last in inside:
+                rest = some ^ (1 << last)
+                least[some, last] = min(least[rest, one] + cost[one][last] for one in inside if one != last)
+    return min(least[(1 << count) - 1, last] for last in range(count))
+
+
+@given(places)
+def test_every_strike_is_struck_once(placed: list[tuple[float, float]]) -> None:
+    order = shortest_order(table_with(placed), NOTHING_FIRST)
+
+    assert sorted(order.tolist()) == list(range(len(placed)))
+
+
+@given(places, st.data())
+def test_what_must_come_first_comes_first(placed: list[tuple[float, float]], data: st.DataObject) -> None:
+    # pairs that cannot go round in a circle: all follow one hidden order
+    hidden = data.draw(st.permutations(range(len(placed))))
+    two = st.tuples(*[st.integers(0, max(len(placed) - 1, 0))] * 2).filter(lambda pair: pair[0] < pair[1])
+    pairs = data.draw(st.lists(two, max_size=10)) if len(placed) > 1 else []
+    first = np.array([(hidden[one], hidden[other]) for one, other in pairs], dtype=np.int64).reshape(-1, 2)
+
+    order = shortest_order(table_with(placed), first).tolist()
+
+    assert all(order.index(one) < order.index(other) for one, other in first.tolist())
+
+
+def test_a_circle_of_what_must_come_first_still_gives_an_order() -> None:
+    circle = np.array([(0, 1), (1, 2), (2, 0)])
+
+    order = shortest_order(table_with([(50, 0.1), (60, 0.2), (70, 0.3)]), circle)
+
+    assert sorted(order.tolist()) == [0, 1, 2]
+
+
+@pytest.mark.parametrize("spread_rad", [0.5, 2 * math.pi], ids=["a cluster", "a whole turn"])
+@pytest.mark.parametrize("one_way", [True, False])
+def test_small_cases_are_within_five_in_a_hundred_of_the_best_order_there_is(
+    *, spread_rad: float, one_way: bool
+) -> None:
+    random = np.random.default_rng(31)
+    over = []
+    for _ in range(12):
+        placed = list(zip(random.uniform(36, 115, 8), random.uniform(0, spread_rad, 8), strict=True))
+        table = table_with(placed, one_way=one_way)
+        over.append(length(table, shortest_order(table, NOTHING_FIRST)) / least_by_trying_all(table))
+
+    assert min(over) == 1.0  # never below the best: both count the same
+    assert max(over) < 1.05
+    assert np.mean(over) < 1.005
+
+
+def test_a_table_turns_on_over_the_end_of_the_turn() -> None:
+    degrees = [350, 355, 2, 7]
+
+    moves = table_moves(np.radians(degrees), one_way=True)
+
+    np.testing.assert_allclose(np.degrees(moves.to_rad), [350, 355, 362, 367])
+    assert moves.taken_up.tolist() == [True, False, False, False]
+    assert math.degrees(moves.turned_rad) == pytest.approx(17)
+
+
+def test_a_move_back_goes_a_degree_too_far_and_comes_on_again() -> None:
+    moves = table_moves(np.radians([10, 20, 16]), one_way=True)
+
+    assert moves.taken_up.tolist() == [True, False, True]
+    assert math.degrees(moves.turned_rad) == pytest.approx(10 + 4 + 1 + 1)
+
+
+def test_a_table_without_backlash_comes_from_either_side() -> None:
+    moves = table_moves(np.radians([10, 20, 16]), one_way=False)
+
+    assert not moves.taken_up.any()
+    assert math.degrees(moves.turned_rad) == pytest.approx(10 + 4)
+
+
+@given(st.lists(st.floats(-20, 20), max_size=12))
+def test_no_move_is_longer_than_half_a_turn_and_each_ends_on_its_angle(forward: list[float]) -> None:
+    moves = table_moves(np.array(forward), one_way=True)
+
+    assert (np.abs(np.diff(moves.to_rad)) <= math.pi + 1e-9).all()
+    np.testing.assert_allclose(np.cos(moves.to_rad - np.array(forward)), 1.0, atol=1e-12)
+
+
+def test_without_speeds_a_turn_counts_as_the_way_along_the_outermost_circle() -> None:
+    # from (100 mm, 0): 0.2 rad on at 100 mm is 20 mm; sliding in to 85 mm is 15 mm
+    table = table_of(
+        np.array([100.0, 100.0, 85.0]),
+        np.array([0.0, 0.2, 0.0]),
+        one_way=True,
+        turn_rad_per_s=None,
+        slide_mm_per_s=None,
+    )
+
+    turned, slid = (int(table.cost(np.array(0), np.array(two))) for two in (1, 2))
+
+    assert turned / slid == pytest.approx(20 / 15)
+
+
+@pytest.mark.parametrize("speed", [1e-6, 1.0, 1e9])
+def test_any_speed_gives_an_order(speed: float) -> None:
+    radius_mm, forward_rad = np.array([30.0, 40.0, 50.0]), np.array([1.0, 2.0, 3.0])
+
+    table = table_of(radius_mm, forward_rad, one_way=True, turn_rad_per_s=speed, slide_mm_per_s=1 / speed)
+
+    assert sorted(shortest_order(table, NOTHING_FIRST).tolist()) == [0, 1, 2]
+
+
+@pytest.mark.parametrize("count", [0, 1])
+def test_none_and_one_have_one_order(count: int) -> None:
+    table = table_with([(50.0, 1.0)][:count])
+
+    assert shortest_order(table, NOTHING_FIRST).tolist() == list(range(count))
