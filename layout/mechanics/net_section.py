@@ -8,8 +8,8 @@ them than LINE_GRAIN_MM or RING_GRAIN_RAD. Openings that overlap are counted onc
 """
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 
@@ -34,21 +34,26 @@ class MetalLeft:
         to_mm: Where it ends: the outermost edge.
         line_mm: The least metal left on a ray, over the band.
         line_angle_rad: Where on the disc, in [0, 2π).
-        ring_share: The least share of a ring that is left.
-        ring_radius_mm: Of that ring.
+        ring_mm: What is left, along it, of the ring that keeps the least share of itself.
+        ring_radius_mm: Its radius.
     """
 
     from_mm: float
     to_mm: float
     line_mm: float
     line_angle_rad: float
-    ring_share: float
+    ring_mm: float
     ring_radius_mm: float
 
     @property
     def line_share(self) -> float:
         """The least metal left on a ray as a share of the band."""
         return self.line_mm / (self.to_mm - self.from_mm)
+
+    @property
+    def ring_share(self) -> float:
+        """The least share of a ring that is left."""
+        return self.ring_mm / (FULL_TURN_RAD * self.ring_radius_mm)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -59,15 +64,14 @@ class _Cover:
         from_to: Shape (n, 2). Where each lies; in the order in which they begin.
         low: Shape (n,). Where it begins there.
         high: Shape (n,). Where it ends there.
-        crossing: Curves and places, to where they cross.
-        round_disc: Whether what is covered is an angle, which begins again after a turn.
+        unit: Of from_to. Over angles ("rad") what is covered is a length on a ray; over radii ("mm") it is
+            an angle, which begins again after a turn.
     """
 
     from_to: FloatArray
     low: Curves
     high: Curves
-    crossing: Callable[[Curves, FloatArray], FloatArray]
-    round_disc: bool
+    unit: Literal["rad", "mm"]
 
     def covered(self, stretch: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Shapes (k,). What is covered at either end of stretches without a corner inside, and the most in between."""
@@ -75,7 +79,7 @@ class _Cover:
         still = np.zeros(len(strip))
         low, high = self.low.of(strip, turned_rad=still), self.high.of(strip, turned_rad=still)
         first, last = stretch[which, 0], stretch[which, 1]
-        ends = [(self.crossing(low, at), self.crossing(high, at)) for at in (first, last)]
+        ends = [(low.crossing(at, self.unit), high.crossing(at, self.unit)) for at in (first, last)]
         widest = np.minimum(ends[0][0], ends[1][0]), np.maximum(ends[0][1], ends[1][1])
         at_first, at_last, most = (self._union(which, *each, len(stretch)) for each in (*ends, widest))
         return at_first, at_last, most
@@ -96,15 +100,15 @@ class _Cover:
 
     def most_alone(self) -> FloatArray:
         """Shape (n,). The most each strip covers anywhere."""
-        lows = [self.crossing(self.low, self.from_to[:, end]) for end in (0, 1)]
-        highs = [self.crossing(self.high, self.from_to[:, end]) for end in (0, 1)]
+        lows = [self.low.crossing(self.from_to[:, end], self.unit) for end in (0, 1)]
+        highs = [self.high.crossing(self.from_to[:, end], self.unit) for end in (0, 1)]
         return np.asarray(np.maximum(*highs) - np.minimum(*lows))
 
     def _union(self, group: IntArray, low: FloatArray, high: FloatArray, count: int) -> FloatArray:
         """Shape (count,). Length of the union of the stretches of each group."""
         if not len(group):
             return np.zeros(count)
-        if self.round_disc:
+        if self.unit == "mm":
             start = np.mod(low, FULL_TURN_RAD)
             past = start + (high - low) - FULL_TURN_RAD
             over = past > 0
@@ -151,7 +155,7 @@ def metal_left(
         to_mm=to_mm,
         line_mm=max(to_mm - from_mm - line_mm, 0.0),
         line_angle_rad=math.fmod(line_angle_rad, FULL_TURN_RAD),
-        ring_share=max(1.0 - ring_rad / FULL_TURN_RAD, 0.0),
+        ring_mm=max(FULL_TURN_RAD - ring_rad, 0.0) * ring_radius_mm,
         ring_radius_mm=ring_radius_mm,
     )
 
@@ -175,7 +179,7 @@ def _rays(outlines: dict[int, Outline], track_index: IntArray, edge_angle_rad: F
         strip = np.concatenate([strip, strip[past]])
         turned_rad = np.concatenate([turned_rad, turned_rad[past] - FULL_TURN_RAD])
         parts.append((outline.curves, strips, strip, turned_rad, turned_rad))
-    return _joined(parts, lambda curves, at: curves.radius_mm(at), round_disc=False)
+    return _joined(parts)
 
 
 def _rings(outlines: dict[int, Outline], track_index: IntArray, edge_angle_rad: FloatArray) -> _Cover:
@@ -186,15 +190,10 @@ def _rings(outlines: dict[int, Outline], track_index: IntArray, edge_angle_rad: 
         strip = np.tile(np.arange(len(strips.low)), len(angles_rad))
         turned_rad = np.repeat(angles_rad, len(strips.low))
         parts.append((outline.curves, strips, strip, turned_rad, np.zeros(len(strip))))
-    return _joined(parts, lambda curves, at: curves.angle_rad(at), round_disc=True)
+    return _joined(parts)
 
 
-def _joined(
-    parts: list[tuple[Curves, Strips, IntArray, FloatArray, FloatArray]],
-    crossing: Callable[[Curves, FloatArray], FloatArray],
-    *,
-    round_disc: bool,
-) -> _Cover:
+def _joined(parts: list[tuple[Curves, Strips, IntArray, FloatArray, FloatArray]]) -> _Cover:
     """The strips of all tracks: each with its curves, its strips, which of them, turned by how much, and moved."""
     from_to = np.concatenate([strips.from_to[strip] + moved[:, None] for _, strips, strip, _, moved in parts])
     low = [curves.of(strips.low[strip], turned_rad=turned) for curves, strips, strip, turned, _ in parts]
@@ -205,8 +204,7 @@ def _joined(
         from_to=from_to[order],
         low=Curves.joined(low).of(order, turned_rad=still),
         high=Curves.joined(high).of(order, turned_rad=still),
-        crossing=crossing,
-        round_disc=round_disc,
+        unit=parts[0][1].unit,
     )
 
 

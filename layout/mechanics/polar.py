@@ -10,10 +10,11 @@ import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
+from typing import Literal
 
 import numpy as np
 
-from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
 
 _SHORT = 1e-9  # mm or rad; stretches below it (a nanometre at a metre) are rounding, not shape
 
@@ -26,15 +27,15 @@ class Curves:
         distance_mm: Shape (n,). d of a straight piece, c of a round one.
         direction_rad: Shape (n,). φ of a straight piece, ψ of a round one.
         round_mm: Shape (n,). a; NaN for a straight piece.
-        far: Shape (n,). +1 on the side of a circle away from the centre, −1 on the near side; 1 where straight.
-        side: Shape (n,). +1 where θ is above the direction, −1 where below.
+        far: Shape (n,). Whether it is on the side of its circle away from the centre; no matter where straight.
+        above: Shape (n,). Whether θ is above the direction.
     """
 
     distance_mm: FloatArray
     direction_rad: FloatArray
     round_mm: FloatArray
-    far: FloatArray
-    side: FloatArray
+    far: BoolArray
+    above: BoolArray
 
     def of(self, index: IntArray, *, turned_rad: FloatArray) -> "Curves":
         """These pieces of it, each turned about the centre by an angle of its own."""
@@ -43,7 +44,7 @@ class Curves:
             direction_rad=self.direction_rad[index] + turned_rad,
             round_mm=self.round_mm[index],
             far=self.far[index],
-            side=self.side[index],
+            above=self.above[index],
         )
 
     @staticmethod
@@ -54,7 +55,7 @@ class Curves:
             direction_rad=np.concatenate([part.direction_rad for part in parts]),
             round_mm=np.concatenate([part.round_mm for part in parts]),
             far=np.concatenate([part.far for part in parts]),
-            side=np.concatenate([part.side for part in parts]),
+            above=np.concatenate([part.above for part in parts]),
         )
 
     def radius_mm(self, angle_rad: FloatArray) -> FloatArray:
@@ -64,14 +65,21 @@ class Curves:
         # fmax: at a tangent the root is of a zero that may be rounded below it; NaN where straight is not used.
         half_chord_mm = np.sqrt(np.fmax(self.round_mm**2 - across_mm**2, 0.0))
         straight_mm = self.distance_mm / np.cos(apart)
-        return np.asarray(np.where(np.isnan(self.round_mm), straight_mm, along_mm + self.far * half_chord_mm))
+        return np.asarray(
+            np.where(np.isnan(self.round_mm), straight_mm, along_mm + np.where(self.far, half_chord_mm, -half_chord_mm))
+        )
 
     def angle_rad(self, radius_mm: FloatArray) -> FloatArray:
         """Where each piece crosses the circle of a radius about the centre, as radius_mm."""
         squares_mm2 = radius_mm**2 + self.distance_mm**2 - self.round_mm**2
         round_cosine = squares_mm2 / (2 * radius_mm * self.distance_mm)
         cosine = np.where(np.isnan(self.round_mm), self.distance_mm / radius_mm, round_cosine)
-        return np.asarray(self.direction_rad + self.side * np.arccos(np.clip(cosine, -1.0, 1.0)))
+        apart = np.arccos(np.clip(cosine, -1.0, 1.0))
+        return np.asarray(self.direction_rad + np.where(self.above, apart, -apart))
+
+    def crossing(self, at: FloatArray, unit: Literal["rad", "mm"]) -> FloatArray:
+        """radius_mm at angles ("rad") or angle_rad at radii ("mm")."""
+        return self.radius_mm(at) if unit == "rad" else self.angle_rad(at)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -79,12 +87,14 @@ class Strips:
     """An outline's inside, cut into strips between two pieces of it.
 
     Attributes:
-        from_to: Shape (m, 2). The stretch of angle (or of radius) over which each strip lies.
+        from_to: Shape (m, 2). The stretch of angle or of radius over which each strip lies.
+        unit: Of from_to: "rad" for strips along rays, "mm" for strips along circles.
         low: Shape (m,). The piece it begins at, on every ray (or circle) of the stretch.
         high: Shape (m,). The piece it ends at.
     """
 
     from_to: FloatArray
+    unit: Literal["rad", "mm"]
     low: IntArray
     high: IntArray
 
@@ -106,7 +116,7 @@ class Outline:
     reach_mm: tuple[float, float]
 
 
-_Piece = tuple[float, float, float, float, float]  # the five fields of Curves, in their order
+_Piece = tuple[float, float, float, bool, bool]  # the five fields of Curves, in their order
 _Ends = tuple[float, float, float, float]  # radius and angle where a piece begins, and where it ends
 
 
@@ -132,8 +142,8 @@ def outline_of(points_mm: FloatArray, bulges: FloatArray) -> Outline | None:
     spans = np.array(ends)
     return Outline(
         curves=curves,
-        by_angle=_strips(np.sort(spans[:, 1::2], axis=1), curves.radius_mm),
-        by_radius=_strips(np.sort(spans[:, 0::2], axis=1), curves.angle_rad),
+        by_angle=_strips(np.sort(spans[:, 1::2], axis=1), curves, "rad"),
+        by_radius=_strips(np.sort(spans[:, 0::2], axis=1), curves, "mm"),
         reach_mm=(float(spans[:, 0::2].min()), float(spans[:, 0::2].max())),
     )
 
@@ -154,7 +164,7 @@ def _straight_piece(start: complex, end: complex) -> Callable[[complex, complex]
 
     def piece(first: complex, last: complex) -> _Piece:
         above = ((first + last) * normal.conjugate()).imag > 0
-        return distance_mm, cmath.phase(normal), math.nan, 1.0, 1.0 if above else -1.0
+        return distance_mm, cmath.phase(normal), math.nan, True, above
 
     return piece
 
@@ -191,30 +201,29 @@ def _round_piece(start: complex, end: complex, bulge: float) -> Callable[[comple
         point = centre + round_mm * middle / abs(middle)
         along = point * out.conjugate()
         far = abs(point) > distance_mm * along.real / abs(point)
-        return distance_mm, cmath.phase(out), round_mm, 1.0 if far else -1.0, 1.0 if along.imag > 0 else -1.0
+        return distance_mm, cmath.phase(out), round_mm, far, along.imag > 0
 
     return piece
 
 
 def _curves(pieces: list[_Piece]) -> Curves:
-    columns = np.array(pieces).T
-    return Curves(
-        distance_mm=columns[0], direction_rad=columns[1], round_mm=columns[2], far=columns[3], side=columns[4]
-    )
+    distance_mm, direction_rad, round_mm, far, above = (np.array(column) for column in zip(*pieces, strict=True))
+    return Curves(distance_mm=distance_mm, direction_rad=direction_rad, round_mm=round_mm, far=far, above=above)
 
 
-def _strips(spans: FloatArray, crossing: Callable[[FloatArray], FloatArray]) -> Strips:
+def _strips(spans: FloatArray, curves: Curves, unit: Literal["rad", "mm"]) -> Strips:
     """Between each two places where a piece ends, the pieces there are paired off in their order."""
     stops = np.unique(spans)
     stops = stops[np.concatenate([[True], np.diff(stops) > _SHORT])]
     middle = (stops[:-1] + stops[1:])[:, None] / 2
     here = (spans[:, 0] < middle) & (middle < spans[:, 1])
-    at = np.where(here, crossing(middle), np.inf)
+    at = np.where(here, curves.crossing(middle, unit), np.inf)
     order = np.argsort(at, axis=1, kind="stable")
     pair_count = here.sum(axis=1) // 2
     strip, pair = np.nonzero(np.arange(order.shape[1] // 2) < pair_count[:, None])
     return Strips(
         from_to=np.stack([stops[strip], stops[strip + 1]], axis=1),
+        unit=unit,
         low=order[strip, 2 * pair],
         high=order[strip, 2 * pair + 1],
     )

@@ -85,14 +85,15 @@ def test_a_ring_cut_right_round_leaves_nothing() -> None:
     assert left.ring_share == 0.0
 
 
-def test_an_opening_across_the_start_of_the_turn_is_seen_whole() -> None:
-    # at 55 s the working edge lies at 0 degrees, where the angles begin again
-    left = left_on(disc_of(PLAIN, [(1, 55.0)], PRESS))
-    elsewhere = left_on(disc_of(PLAIN, [(1, 10.0)], PRESS))
+def test_openings_across_the_start_of_the_turn_are_seen_whole() -> None:
+    # At 54.9 s the working edges lie 0.6 degrees short of a turn. The ray told leans 1.05 degrees from them: it
+    # lies past the start of the turn, in the middle of the inner opening, which begins before it.
+    left = left_on(disc_of(PLAIN, [(1, 54.9), (3, 54.9)], PRESS))
+    elsewhere = left_on(disc_of(PLAIN, [(1, 10.0), (3, 10.0)], PRESS))
 
     assert left.line_mm == pytest.approx(elsewhere.line_mm, abs=LINE_GRAIN_MM)
     assert left.ring_share == pytest.approx(elsewhere.ring_share, abs=RING_GRAIN_RAD)
-    assert left.line_angle_rad == pytest.approx(math.atan(1.85 / 50.8), abs=1e-6)
+    assert left.line_angle_rad == pytest.approx(math.radians(-0.6) + math.atan(1.85 / 100.8), abs=1e-6)
 
 
 def test_a_disc_without_openings_has_no_net_section() -> None:
