@@ -11,9 +11,17 @@ from layout.check.blank import (
     webs_to_the_rim_hold,
 )
 from layout.check.cutter import cutter_can_form, holes_are_large_enough, press_has_the_tool, slits_are_wide_enough
+from layout.check.drive import (
+    drive_carries_the_teeth,
+    music_waits_for_the_speed,
+    tempo_holds,
+    train_gives_the_turn,
+    winding_lasts,
+)
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.forming import bends_are_wide_enough, bends_lie_across_the_rolling
 from layout.check.music import WholeTune, music_fits_the_turn, something_plays
+from layout.check.press import feet_stand_on_flat_metal, hits_fall_on_whole_metal, press_is_strong_enough
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
 from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
 from layout.check.star_wheel import (
@@ -52,10 +60,18 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     webs_to_features_hold,
     keep_outs_are_clear,
     webs_between_openings_hold,
+    press_is_strong_enough,
+    hits_fall_on_whole_metal,
+    feet_stand_on_flat_metal,
     star_wheels_keep_up,
     dampers_recover,
     plucks_lie_in_the_music,
     rest_is_clear,
+    music_waits_for_the_speed,
+    drive_carries_the_teeth,
+    winding_lasts,
+    tempo_holds,
+    train_gives_the_turn,
 )
 
 

@@ -8,6 +8,9 @@ at its onset), the *bass* (lowest, and not highest) or *inner* (neither).
 from dataclasses import dataclass
 
 from layout.arrange.arrangement import LeftOutReason, Tried, Worth
+from layout.mechanics.starting import Starting
+from layout.mechanics.torque import TurnTorque
+from layout.mechanics.winding import WindingRun
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -129,6 +132,35 @@ class PeakLoad:
         return None if self.limit_nmm is None else self.peak_nmm / self.limit_nmm
 
 
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Driving:
+    """What drives the disc, and how it turns. Each part is None where what it needs is not stated.
+
+    Attributes:
+        starting: From rest to speed at the stated turn.
+        starting_fastest: The same at the fastest turn.
+        torque: Of the teeth over a whole turn; None for no plucks too.
+        peak_chord: Whose teeth are lifted at its peak; () where there is none.
+        winding: One winding run down with this disc.
+        upper_bound: Whether the winding leaves something aside that is not stated, so that turns and torques are
+            at most, and losses of speed at least, what is told.
+        braked_revolution_s: Seconds a turn by air brake and train.
+        clearing_count: Tracks used: on each the first note may be early or lost where its star wheel stands
+            part-turned after a change of disc, so that a turn to clear them does good; 0 for no plucks.
+        not_stated: Names of the fields of the movement that would be needed for the rest.
+    """
+
+    starting: Starting | None
+    starting_fastest: Starting | None
+    torque: TurnTorque | None
+    peak_chord: tuple[Loaded, ...]
+    winding: WindingRun | None
+    upper_bound: bool
+    braked_revolution_s: float | None
+    clearing_count: int
+    not_stated: tuple[str, ...]
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Report:
     """What a disc keeps of its tune, and what that cost.
@@ -148,6 +180,7 @@ class Report:
         tracks: The timing of every track used, the innermost first.
         load: The greatest load; None where there is none to tell.
         no_load_because: Why there is none; None where there is one.
+        drive: What drives the disc, and how it turns.
     """
 
     total: Tally
@@ -164,3 +197,4 @@ class Report:
     tracks: tuple[TrackTiming, ...]
     load: PeakLoad | None
     no_load_because: str | None
+    drive: Driving

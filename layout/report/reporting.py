@@ -7,6 +7,7 @@ from layout.documents.pitch import pitch_of
 from layout.place.disc import Disc
 from layout.read.score import Score
 from layout.report.bars import worst_bars
+from layout.report.driving import driving_of
 from layout.report.fates import fates_of
 from layout.report.report import Loaded, PeakLoad, Report
 from layout.report.timing import timing_of
@@ -44,6 +45,7 @@ def report_on(score: Score, arrangement: Arrangement, disc: Disc) -> Report:
         tracks=timing_of(disc, arrangement),
         load=load,
         no_load_because=None if load else NO_STIFFNESS if disc.projection_count else NOTHING_PLUCKED,
+        drive=driving_of(disc),
     )
 
 

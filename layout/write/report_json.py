@@ -1,14 +1,21 @@
 """report.json: what a disc keeps of its tune and what that cost, for programs. Fields may be added, never renamed."""
 
+import math
 from typing import Any
 
 from layout.arrange.arrangement import Tried, Worth
-from layout.report.report import BarLoss, PeakLoad, Tally, TrackTiming
+from layout.documents.movement import Movement
+from layout.mechanics.starting import Starting
+from layout.mechanics.torque import TurnTorque
+from layout.mechanics.winding import WindingRun
+from layout.report.report import BarLoss, Driving, Loaded, PeakLoad, Tally, TrackTiming
 from layout.version import ENGINE_VERSION
 from layout.write.json_lines import json_lines
 from layout.write.laid_out import LaidOut
+from layout.write.numbers import rounded
 
 FORMAT = "discwright-report/1"
+CURVE_DECIMALS = 6  # of a second and of a newton millimetre: finer than any plot
 Record = dict[str, Any]  # JSON: what it holds is said by report_record
 
 
@@ -29,7 +36,9 @@ def report_record(laid_out: LaidOut) -> Record:
 
     What each number means stands at layout.report.report. A share is null where there is nothing to
     share, `melody` where no lead channel sets it apart from the top line, `load` where there is
-    none, and `no_load_because` then says why. Nudges are told to a nanosecond, all else unrounded.
+    none, and `no_load_because` then says why. Nudges are told to a nanosecond, the torque over the turn to
+    a microsecond and as finely, all else unrounded. In `drive` what is not known is null, and `not_stated`
+    names the fields of the movement it would need.
 
     Args:
         laid_out: The layout.
@@ -60,6 +69,7 @@ def report_record(laid_out: LaidOut) -> Record:
         "tried": [_tried(tried) for tried in report.tried],
         "load": None if report.load is None else _load(report.load),
         "no_load_because": report.no_load_because,
+        "drive": _drive(report.drive, movement),
         "tracks": [_track(track) for track in report.tracks],
     }
 
@@ -112,7 +122,64 @@ def _load(load: PeakLoad) -> Record:
         "limit_nmm": load.limit_nmm,
         "share_of_limit": load.share_of_limit,
         "at_s": load.at_s,
-        "chord": [{"track": loaded.track, "pitch": loaded.pitch} for loaded in load.chord],
+        "chord": _chord(load.chord),
+    }
+
+
+def _chord(chord: tuple[Loaded, ...]) -> list[Record]:
+    return [{"track": loaded.track, "pitch": loaded.pitch} for loaded in chord]
+
+
+def _drive(drive: Driving, movement: Movement) -> Record:
+    limit_nmm = movement.drive.torque_limit_nmm if movement.drive is not None else None
+    return {
+        "start": None if drive.starting is None else _start(drive.starting, drive.starting_fastest, movement),
+        "torque": None if drive.torque is None else _torque(drive.torque, drive.peak_chord, limit_nmm),
+        "winding": None if drive.winding is None else _winding(drive.winding, upper_bound=drive.upper_bound),
+        "revolution": {"stated_s": movement.revolution_s, "by_brake_and_train_s": drive.braked_revolution_s},
+        "clearing_turn": {"track_count": drive.clearing_count},
+        "not_stated": list(drive.not_stated),
+    }
+
+
+def _start(starting: Starting, fastest: Starting | None, movement: Movement) -> Record:
+    return {
+        "inertia_kg_m2": starting.inertia_kg_m2,
+        "time_constant_s": starting.time_constant_s,
+        "to_speed_s": starting.to_speed_s,
+        "to_speed_deg": math.degrees(starting.to_speed_rad),
+        "to_speed_at_fastest_deg": None if fastest is None else math.degrees(fastest.to_speed_rad),
+        "before_music_deg": movement.before_music_deg,
+        "at_least": starting.at_least,
+    }
+
+
+def _torque(torque: TurnTorque, chord: tuple[Loaded, ...], limit_nmm: float | None) -> Record:
+    return {
+        "peak_nmm": torque.peak_nmm,
+        "limit_nmm": limit_nmm,
+        "at_s": torque.peak_at_s,
+        "chord": _chord(chord),
+        "mean_nmm": torque.mean_nmm,
+        "over_the_turn": {
+            "at_s": rounded(torque.at_s, CURVE_DECIMALS).tolist(),
+            "torque_nmm": rounded(torque.torque_nmm, CURVE_DECIMALS).tolist(),
+        },
+    }
+
+
+def _winding(run: WindingRun, *, upper_bound: bool) -> Record:
+    return {
+        "full_nmm": run.full_nmm,
+        "spent_nmm": run.spent_nmm,
+        "needed_nmm": run.needed_nmm,
+        "turns": run.turn_count,
+        "ended_by": run.ended_by,
+        "upper_bound": upper_bound,
+        "last_turn_slows_share": run.last_turn_slows_ratio,
+        "winding_slows_share": run.winding_slows_ratio,
+        "first_revolution_s": run.first_revolution_s,
+        "last_revolution_s": run.last_revolution_s,
     }
 
 

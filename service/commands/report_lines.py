@@ -34,12 +34,13 @@ def kept_lines(report: Report) -> list[str]:
 
 
 def report_lines(report: Report) -> list[str]:
-    """Lines that tell the rest: voices, the worst bars, transpositions, the load and the timing."""
+    """Lines that tell the rest: voices, the worst bars, transpositions, the load, the drive and the timing."""
     return [
         *_voice_lines(report),
         *_bar_lines(report["worst_bars"]),
         *_tried_lines(report["tried"]),
         *_load_lines(report),
+        *_drive_lines(report["drive"]),
         *_timing_lines(report["tracks"]),
     ]
 
@@ -127,6 +128,30 @@ def _load_lines(report: Report) -> list[str]:
     if load["limit_nmm"] is not None:
         limit = f"{100 * load['share_of_limit']:.1f} % of the {load['limit_nmm']:.4g} N mm the drive has"
     return _wrapped("load", f"at most {load['peak_nmm']:.4g} N mm, {limit}, at {load['at_s']:.3f} s: {chord}")
+
+
+def _drive_lines(drive: Mapping[str, Any]) -> list[str]:
+    told = []
+    if start := drive["start"]:
+        least = "at least " if start["at_least"] else ""
+        told.append(
+            f"99 % of its speed after {least}{start['to_speed_s']:.2f} s and {start['to_speed_deg']:.2f}°; "
+            f"music may begin at {start['before_music_deg']:g}°"
+        )
+    if winding := drive["winding"]:
+        most, least = ("at most ", "at least ") if winding["upper_bound"] else ("", "")
+        told.append(
+            f"{most}{winding['turns']:.2f} turns a winding, the last {least}"
+            f"{100 * winding['last_turn_slows_share']:.1f} % slower at its end"
+        )
+    if clearing := drive["clearing_turn"]["track_count"]:
+        told.append(
+            f"after a change of disc let it make one turn unheard: the first note of each of {clearing} tracks may "
+            "come early or not at all"
+        )
+    if drive["not_stated"]:
+        told.append(f"not stated: {', '.join(drive['not_stated'])}")
+    return _wrapped("drive", "; ".join(told)) if told else []
 
 
 def _timing_lines(tracks: list[Mapping[str, Any]]) -> list[str]:

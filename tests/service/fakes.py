@@ -86,6 +86,14 @@ REPORT: dict[str, Any] = {
     "tried": [],
     "load": None,
     "no_load_because": "nothing is lifted",
+    "drive": {
+        "start": None,
+        "torque": None,
+        "winding": None,
+        "revolution": {"stated_s": 66.0, "by_brake_and_train_s": None},
+        "clearing_turn": {"track_count": 0},
+        "not_stated": [],
+    },
     "tracks": [],
 }
 

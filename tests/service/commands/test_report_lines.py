@@ -179,3 +179,34 @@ def test_a_report_of_nothing_can_be_told() -> None:
         "  total         0     0            -       0       0        -     -        0         0",
         "  load        not known: nothing is lifted",
     ]
+
+
+START = {"to_speed_s": 1.0093, "to_speed_deg": 2.9876, "before_music_deg": 16.0, "at_least": False}
+WINDING = {"turns": 11.0, "last_turn_slows_share": 0.01629, "upper_bound": False}
+
+
+def drive_told(**changes: Any) -> str:
+    """The words under the label of the drive, "" where there is none."""
+    lines = told(drive=REPORT["drive"] | changes, tracks=[])
+    places = [place for place, line in enumerate(lines) if line.startswith("  drive")]
+    return " ".join(" ".join(lines[places[0] :]).split()).removeprefix("drive ") if places else ""
+
+
+def test_the_drive_is_told_in_a_few_words() -> None:
+    assert drive_told(start=START, winding=WINDING, clearing_turn={"track_count": 44}) == (
+        "99 % of its speed after 1.01 s and 2.99°; music may begin at 16°; 11.00 turns a winding, the last 1.6 % slower "
+        "at its end; after a change of disc let it make one turn unheard: the first note of each of 44 tracks may come "
+        "early or not at all"
+    )
+
+
+def test_what_the_drive_leaves_aside_is_told_as_a_bound() -> None:
+    words = drive_told(start=START | {"at_least": True}, winding=WINDING | {"upper_bound": True})
+
+    assert words.startswith("99 % of its speed after at least 1.01 s and 2.99°;")
+    assert words.endswith("at most 11.00 turns a winding, the last at least 1.6 % slower at its end")
+
+
+def test_what_the_movement_does_not_state_of_its_drive_is_named() -> None:
+    assert drive_told(not_stated=["drive", "teeth.lift_mm"]) == "not stated: drive, teeth.lift_mm"
+    assert drive_told() == ""
