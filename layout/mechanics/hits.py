@@ -8,7 +8,7 @@ import shapely
 from numpy.typing import NDArray
 
 from layout.documents.cutter import Cutter, Tool
-from layout.documents.making import Feeds, Press
+from layout.documents.making import Feeds, Foot, Press
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
@@ -81,16 +81,29 @@ class Hits:
         tool = self.tool
         if tool is None or tool.foot is None or tool.makes != "lance" or not len(self.edge_angle_rad):
             return np.zeros((0, 2), dtype=np.int64)
-        half_mm = (tool.tab_width_mm or tool.footprint_width_mm) / 2
-        tabs = self._rectangles(-self.pattern.body_behind_mm, 0.0, half_mm)
-        half_foot_mm, strike_mm = tool.foot.length_mm / 2, self.pattern.strike_u_mm
-        feet = self._rectangles(strike_mm - half_foot_mm, strike_mm + half_foot_mm, tool.foot.width_mm / 2)
-        struck, standing = shapely.STRtree(tabs).query(feet, predicate="intersects")
-        apart = struck != standing
-        struck, standing = struck[apart], standing[apart]
-        under = shapely.area(shapely.intersection(tabs[standing], feet[struck])) > GRAIN_MM2
-        pairs = np.column_stack([standing[under], struck[under]]).astype(np.int64)
-        return pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))]
+        feet = self._feet(tool.foot)
+        struck, standing = shapely.STRtree(self._tabs()).query(feet, predicate="intersects")
+        pairs = np.column_stack([standing, struck]).astype(np.int64)[struck != standing]
+        pairs = pairs[self.under_the_foot(pairs[:, 0], pairs[:, 1]) > 0]
+        return np.asarray(pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))], dtype=np.int64)
+
+    def under_the_foot(self, standing: IntArray, struck: IntArray) -> FloatArray:
+        """Shape (m,). The share of each standing tab, seen from above, that lies under the foot at a strike.
+
+        Zeros where that is mere rounding, or the tool states no foot.
+        """
+        if self.tool is None or self.tool.foot is None:
+            return np.zeros(len(standing))
+        tabs, feet = self._tabs()[standing], self._feet(self.tool.foot)[struck]
+        common_mm2 = shapely.area(shapely.intersection(tabs, feet))
+        return np.asarray(np.where(common_mm2 > GRAIN_MM2, common_mm2 / shapely.area(tabs), 0.0))
+
+    def _tabs(self) -> NDArray[np.object_]:
+        return self._rectangles(-self.pattern.body_behind_mm, 0.0, self.movement.projection.width_mm / 2)
+
+    def _feet(self, foot: Foot) -> NDArray[np.object_]:
+        strike_mm = self.pattern.strike_u_mm
+        return self._rectangles(strike_mm - foot.length_mm / 2, strike_mm + foot.length_mm / 2, foot.width_mm / 2)
 
     def _rectangles(self, from_u_mm: float, to_u_mm: float, half_mm: float) -> NDArray[np.object_]:
         corners = [(from_u_mm, -half_mm), (to_u_mm, -half_mm), (to_u_mm, half_mm), (from_u_mm, half_mm)]

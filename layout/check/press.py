@@ -1,0 +1,200 @@
+"""Checks of a press: its force, hits that fall partly into an opening, feet that stand on formed metal."""
+
+import math
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+from shapely.geometry.base import BaseGeometry
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.check.margin import MOST_FINDINGS, Condition, judged
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.blank import feature_core_mm
+from layout.mechanics.hits import GRAIN_MM2, Hits
+from layout.mechanics.punching import cutting_force_n, press_force_n, sheared_length_mm
+from layout.mechanics.spacing import core_geometries
+from layout.place.disc import Disc
+
+_QUARTER_STEPS = 64  # straight pieces to a quarter of a round end: off by 0.0002 of its radius at most
+
+
+def press_is_strong_enough(disc: Disc) -> list[Finding]:
+    """An error where a hit takes more force than the press has.
+
+    Not judged where the press's capacity_n or the sheet's shear_strength_n_per_mm2 is not stated, nor
+    where no tool fits.
+    """
+    hits, blank = _hits_of(disc), disc.movement.disc
+    capacity_n, shear_n_per_mm2 = hits.press.capacity_n, blank.shear_strength_n_per_mm2
+    if disc.cutter.kind == "laser" or hits.tool is None or capacity_n is None or shear_n_per_mm2 is None:
+        return []
+    length_mm = sheared_length_mm(hits.tool)
+    cutting_n = cutting_force_n(length_mm, blank.thickness_mm, shear_n_per_mm2)
+    force_n = press_force_n(cutting_n, hits.press.stripping_share)
+    worth = disc.movement.plus_minus
+    unsure = worth("/disc/thickness_mm") / blank.thickness_mm
+    unsure += worth("/disc/shear_strength_n_per_mm2") / shear_n_per_mm2
+    condition = Condition(
+        code=Code.PRESS_TOO_WEAK,
+        says=(
+            f"A hit of {hits.tool.tool} shears {length_mm:.2f} mm of {blank.thickness_mm:g} mm {blank.material} at "
+            f"{shear_n_per_mm2:g} N/mm² and takes {force_n:.0f} N with stripping; "
+            f"{disc.cutter.id} has {capacity_n:.0f} N"
+        ),
+        so="the press would stall or be overloaded",
+        measured=force_n,
+        limit=capacity_n,
+        unit="N",
+        margin=capacity_n - force_n,
+        rests_on=(),
+        also_unsure=force_n * unsure,
+        at=Place(),
+        remedy="Use a stronger press, a smaller tool or thinner sheet; a dull edge takes 15 to 30 % more.",
+    )
+    return judged(condition, disc.movement)
+
+
+def hits_fall_on_whole_metal(disc: Disc) -> list[Finding]:
+    """An error for every hit that falls partly into an opening struck before it, or into a hole of the blank.
+
+    The metal then pushes the punch to one side, and its edge runs into the die (common practice). A hit
+    that falls wholly into an opening meets no metal and is no matter of this check.
+    """
+    if disc.cutter.kind == "laser":
+        return []
+    hits = _hits_of(disc)
+    cores = core_geometries(hits.placed_mm(disc.pattern.core_points_mm))
+    footprints = np.array([_grown(core, disc.pattern.core_round_mm) for core in cores], dtype=np.object_)
+    return (_over_each_other(disc, hits, footprints) + _over_the_blank(disc, footprints))[:MOST_FINDINGS]
+
+
+def _over_each_other(disc: Disc, hits: Hits, footprints: NDArray[np.object_]) -> list[Finding]:
+    one, two = shapely.STRtree(footprints).query(footprints, predicate="intersects")
+    one, two = one[one < two], two[one < two]
+    if not len(one):
+        return []  # the usual case, which needs no order
+    place = np.argsort(hits.order())
+    earlier, later = np.where(place[one] < place[two], one, two), np.where(place[one] < place[two], two, one)
+    share = _shares(footprints[later], footprints[earlier])
+    return [
+        _over(disc, int(later[pair]), float(share[pair]), _opening_of(disc, earlier[pair]), (int(earlier[pair]),))
+        for pair in _by_place(later, earlier, share)
+    ]
+
+
+def _over_the_blank(disc: Disc, footprints: NDArray[np.object_]) -> list[Finding]:
+    blank = disc.movement.disc
+    named: list[tuple[str, BaseGeometry]] = [("the centre hole", _grown(shapely.Point(0, 0), blank.centre_hole_mm / 2))]
+    for feature in blank.features:
+        for angle_deg in feature.angles_deg:
+            core, round_mm = feature_core_mm(feature, math.radians(angle_deg))
+            named.append((f"the {feature.purpose} {feature.shape} at {angle_deg:.3f}°", _grown(core, round_mm)))
+    tree = shapely.STRtree([shape for _, shape in named])
+    hit, hole = tree.query(footprints, predicate="intersects")
+    share = _shares(footprints[hit], np.array([shape for _, shape in named], dtype=np.object_)[hole])
+    return [
+        _over(disc, int(hit[pair]), float(share[pair]), named[hole[pair]][0], ())
+        for pair in _by_place(hit, hole, share)
+    ]
+
+
+def _grown(core: BaseGeometry, round_mm: float) -> BaseGeometry:
+    return core if round_mm == 0 else core.buffer(round_mm, quad_segs=_QUARTER_STEPS)
+
+
+def _shares(of: NDArray[np.object_], under: NDArray[np.object_]) -> FloatArray:
+    """Shape (n,). Which share of each shape lies over the other; 0 where that is mere rounding, or all of it."""
+    common_mm2, whole_mm2 = shapely.area(shapely.intersection(of, under)), shapely.area(of)
+    partly = (common_mm2 > GRAIN_MM2) & (common_mm2 < whole_mm2 - GRAIN_MM2)
+    return np.where(partly, common_mm2 / whole_mm2, 0.0)
+
+
+def _by_place(one: IntArray, two: IntArray, share: FloatArray) -> list[int]:
+    order = np.lexsort((two, one))
+    return [int(pair) for pair in order[share[order] > 0]]
+
+
+def _opening_of(disc: Disc, projection: int) -> str:
+    return f"the opening struck before it on track {int(disc.track_index[projection]) + 1}"
+
+
+def _over(disc: Disc, hit: int, share: float, what: str, beside: tuple[int, ...]) -> Finding:
+    track = int(disc.track_index[hit]) + 1
+    return Finding(
+        code=Code.HIT_OVER_OPENING,
+        level=Level.ERROR,
+        message=(
+            f"The hit on track {track} falls with {100 * share:.1f} % of its footprint into {what}: "
+            "the metal pushes the punch aside and its edge runs into the die."
+        ),
+        measured=100 * share,
+        limit=0.0,
+        unit="%",
+        at=_place(disc, (hit, *beside)),
+        remedy="Leave one of the two notes out or put it on another track; or correct the blank's hole.",
+    )
+
+
+def feet_stand_on_flat_metal(disc: Disc) -> list[Finding]:
+    """An error for every hit whose tool would press its stripper or die foot on a tab formed before it.
+
+    The foot would press the tab flat and the disc is spoilt, so it is an error. Only what is struck
+    earlier stands already: the order of the hits decides. Not judged where the tool states no foot.
+    """
+    if disc.cutter.kind == "laser":
+        return []
+    hits = _hits_of(disc)
+    pairs = hits.feet_on_formed()
+    if not len(pairs):
+        return []
+    place = np.argsort(hits.order())
+    standing, struck = pairs[place[pairs[:, 0]] < place[pairs[:, 1]]].T
+    share = hits.under_the_foot(standing, struck)
+    return [
+        _foot(disc, hits, int(standing[pair]), int(struck[pair]), float(share[pair]))
+        for pair in _by_place(struck, standing, share)[:MOST_FINDINGS]
+    ]
+
+
+def _foot(disc: Disc, hits: Hits, standing: int, struck: int, share: float) -> Finding:
+    tracks = tuple(int(disc.track_index[index]) + 1 for index in (struck, standing))
+    foot = None if hits.tool is None else hits.tool.foot
+    size = (
+        ""
+        if hits.tool is None or foot is None
+        else f" of {hits.tool.tool} ({foot.length_mm:g} by {foot.width_mm:g} mm)"
+    )
+    return Finding(
+        code=Code.FOOT_ON_FORMED,
+        level=Level.ERROR,
+        message=(
+            f"Striking on track {tracks[0]}, the foot{size} stands on {100 * share:.1f} % of the tab formed before it "
+            f"on track {tracks[1]} and presses it flat."
+        ),
+        measured=100 * share,
+        limit=0.0,
+        unit="%",
+        at=_place(disc, (struck, standing)),
+        remedy="Leave one of the two notes out or put it on another track; or use a tool with a smaller foot.",
+    )
+
+
+def _place(disc: Disc, projections: tuple[int, ...]) -> Place:
+    return Place(
+        tracks=tuple(int(disc.track_index[index]) + 1 for index in projections),
+        projections=projections,
+        radius_mm=float(disc.radius_mm[projections[0]]),
+        angle_deg=float(np.degrees(disc.edge_angle_rad[projections[0]])),
+    )
+
+
+def _hits_of(disc: Disc) -> Hits:
+    return Hits(
+        movement=disc.movement,
+        cutter=disc.cutter,
+        turning=disc.turning,
+        pattern=disc.pattern,
+        edge_radius_mm=disc.radius_mm,
+        edge_angle_rad=disc.edge_angle_rad,
+    )
