@@ -64,8 +64,10 @@ class Making:
         rapid_length_mm: Between cuts and marks.
         pierce_count: Cuts begun.
         hit_count: Strikes of a press.
-        hit_force_n: Of the strongest hit; None on a laser, and where the shear strength is not stated.
-        stripping_force_n: That pulls the punch out again after it; None as `hit_force_n`.
+        hit_force_n: That one projection's hit takes, with a sharp tool; None on a laser, where no tool fits, and
+            where the shear strength is not stated.
+        stripping_force_n: That pulls the punch out again after it; None as `hit_force_n`, and where the cutter
+            states no press.
         fold_to_rad: The angle the tabs are bent to, so that they stand at 90° once let go; None where nothing is
             folded, and where the springback is not stated.
         blank_mass_kg: The round blank before anything is cut in it; None where the density is not stated.

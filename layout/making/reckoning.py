@@ -10,6 +10,8 @@ from layout.making.pricing import MINOR_UNIT_DECIMALS, Quantities, price_lines, 
 from layout.making.timing import feeds_not_stated, sum_s, time_parts
 from layout.making.weighing import blank_mass_kg, disc_mass_kg
 from layout.mechanics.bending import over_bend_rad
+from layout.mechanics.projection import fitting_tool
+from layout.mechanics.punching import cutting_force_n, sheared_length_mm, stripping_force_n
 from layout.place.disc import Disc
 
 _NO_FEEDS = Feeds()
@@ -41,6 +43,8 @@ def making_of(disc: Disc, plan: CutPlan) -> Making:
         rapid_length_mm=None if path is None else path.rapid_length_mm,
         pierce_count=quantities.pierce_count,
         hit_count=quantities.hit_count,
+        hit_force_n=_hit_force_n(disc),
+        stripping_force_n=_stripping_force_n(disc),
         fold_to_rad=_fold_to_rad(disc),
         blank_mass_kg=quantities.blank_mass_kg,
         disc_mass_kg=disc_mass_kg(disc),
@@ -54,6 +58,18 @@ def making_of(disc: Disc, plan: CutPlan) -> Making:
     )
 
 
+def _hit_force_n(disc: Disc) -> float | None:
+    blank, tool = disc.movement.disc, fitting_tool(disc.movement, disc.cutter)
+    if tool is None or blank.shear_strength_n_per_mm2 is None:
+        return None
+    return cutting_force_n(sheared_length_mm(tool), blank.thickness_mm, blank.shear_strength_n_per_mm2)
+
+
+def _stripping_force_n(disc: Disc) -> float | None:
+    force_n, press = _hit_force_n(disc), disc.cutter.press
+    return None if force_n is None or press is None else stripping_force_n(force_n, press.stripping_share)
+
+
 def _fold_to_rad(disc: Disc) -> float | None:
     fold = disc.cutter.fold
     if disc.pattern.making != "fold" or fold is None or fold.springback is None:
@@ -65,6 +81,9 @@ def _not_stated(disc: Disc, path: CutPath | None, parts: TimeParts) -> tuple[str
     names = [] if path is None else list(feeds_not_stated(parts))
     if disc.pattern.making == "fold" and _fold_to_rad(disc) is None:
         names.append("cutter.fold.springback")
+    if fitting_tool(disc.movement, disc.cutter) is not None:
+        names += ["movement.disc.shear_strength_n_per_mm2"] * (_hit_force_n(disc) is None)
+        names += ["cutter.press"] * (disc.cutter.press is None)
     if disc.movement.disc.density_kg_m3 is None:
         names.append("movement.disc.density_kg_m3")
     return (*names, *_rates_not_stated(disc.cutter))

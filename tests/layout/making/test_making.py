@@ -310,3 +310,30 @@ def test_a_springback_that_is_not_stated_is_named_where_something_is_folded_and_
     assert (folded.fold_to_rad, slotted.fold_to_rad, lanced.fold_to_rad) == (None, None, None)
     assert "cutter.fold.springback" in folded.not_stated
     assert "cutter.fold.springback" not in (*slotted.not_stated, *lanced.not_stated)
+
+
+PRESS_IN_FULL = cutter_with({"press": {"stripping_share": 0.1}}, PRESS)
+SHEARED = movement_with({"disc/density_kg_m3": 7850, "disc/shear_strength_n_per_mm2": 276})
+
+
+def test_a_hit_takes_its_sheared_length_times_thickness_times_strength() -> None:
+    making = made(NOTHING, {"rates": {"currency": "EUR", "setup": "1"}}, SHEARED, PRESS_IN_FULL)
+
+    # L12 shears 2 * 2.3 + 1.6 = 6.2 mm of 0.5 mm sheet of 276 N/mm² (unipunch.com, material specifications:
+    # low-carbon cold-rolled sheet): 855.6 N; the stripping takes a tenth of that.
+    assert making.hit_force_n == pytest.approx(855.6)
+    assert making.stripping_force_n == pytest.approx(85.56)
+    assert making.not_stated == ()
+
+
+def test_a_force_that_cannot_be_told_is_named_on_a_press_and_not_missed_on_a_laser() -> None:
+    soft = made(NOTHING, {}, STEEL, PRESS_IN_FULL)
+    no_press = made(NOTHING, {"press": None}, SHEARED, PRESS)
+    laser = made(NOTHING, {}, STEEL)
+
+    assert (soft.hit_force_n, soft.stripping_force_n) == (None, None)
+    assert soft.not_stated == ("movement.disc.shear_strength_n_per_mm2", "cutter.rates")
+    assert no_press.hit_force_n == pytest.approx(855.6)
+    assert no_press.stripping_force_n is None
+    assert no_press.not_stated == ("cutter.press", "cutter.rates")
+    assert (laser.hit_force_n, laser.not_stated) == (None, ("cutter.rates",))
