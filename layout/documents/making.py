@@ -9,10 +9,11 @@ from typing import Annotated, Literal, Self
 
 from pydantic import BeforeValidator, Field, WithJsonSchema, model_validator
 
-from layout.documents.reading import Angle, Length, Part, Positive, TimeOrZero
+from layout.documents.reading import Angle, Length, Part, Positive, PositiveAngle, TimeOrZero
 
 MOST_BRIDGES = 24  # bridges round the rim; a few hold a disc
 MOST_RATIO = 20.0  # times the thickness; far above any rule for sheet
+MOST_TAKE_UP_DEG = 30.0  # degrees; far more than any table has play
 
 ToleranceClass = Literal["iso-9013-1", "iso-9013-2", "iso-2768-f", "iso-2768-m", "iso-2768-c", "iso-2768-v"]
 
@@ -102,7 +103,8 @@ class Press(Part):
     """What the press can do.
 
     `stripping_share` is the force that pulls the punch out, as a share of the cutting force. The
-    words go into press.nc where they stand in braces: `{tool}` in `change_word`.
+    words go into press.nc where they stand in braces: `{tool}` in `change_word`. `take_up_deg` is how far the
+    table goes past and comes back, where it must come onto every hit from one side.
     """
 
     capacity_n: Positive | None = None
@@ -110,6 +112,7 @@ class Press(Part):
     strike_word: Word = "M20"
     change_word: Word = "T{tool} M6"
     turns_one_way: bool = True
+    take_up_deg: Annotated[PositiveAngle, Field(le=MOST_TAKE_UP_DEG)] = 1.0
 
     @model_validator(mode="after")
     def _change_names_the_tool(self) -> Self:

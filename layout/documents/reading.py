@@ -83,7 +83,8 @@ LEAST_MM = 0.001  # mm; a micrometre, finer than any cutter
 MOST_MM = 2000.0  # mm; ten times the radius of the largest shipped disc
 LEAST_S, MOST_S = 0.001, 86_400.0  # s; a millisecond to a day
 FULL_TURN_DEG = 360.0
-MOST_OF_OTHER = 1e9  # stiffness, inertia, torque, ratio in their own units
+# Stiffness, inertia, torque, ratio in their own units: the least an inertia of a gramme within a micrometre of its axis.
+LEAST_OF_OTHER, MOST_OF_OTHER = 1e-15, 1e9
 
 _IS_NUMBER = BeforeValidator(_number)
 Length = Annotated[float, _IS_NUMBER, Field(ge=LEAST_MM, le=MOST_MM), _TAKES_STATED]
@@ -93,7 +94,7 @@ Time = Annotated[float, _IS_NUMBER, Field(ge=LEAST_S, le=MOST_S), _TAKES_STATED]
 TimeOrZero = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_S), _TAKES_STATED]
 Angle = Annotated[float, _IS_NUMBER, Field(ge=-FULL_TURN_DEG, le=FULL_TURN_DEG), _TAKES_STATED]
 PositiveAngle = Annotated[float, _IS_NUMBER, Field(gt=0, le=FULL_TURN_DEG), _TAKES_STATED]
-Positive = Annotated[float, _IS_NUMBER, Field(gt=0, le=MOST_OF_OTHER), _TAKES_STATED]
+Positive = Annotated[float, _IS_NUMBER, Field(ge=LEAST_OF_OTHER, le=MOST_OF_OTHER), _TAKES_STATED]
 NotNegative = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_OF_OTHER), _TAKES_STATED]
 Identifier = Annotated[str, BeforeValidator(_identifier), Field(pattern=r"^[a-z][a-z0-9-]{0,63}$")]
 Title = Annotated[str, Field(min_length=1, max_length=120)]
