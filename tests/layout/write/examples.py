@@ -25,7 +25,7 @@ TARNLIGHT = shipped_movement("tarnlight-17")
 LASER = shipped_cutter("fibre-laser")
 PRESS = shipped_cutter("turn-press")
 OPEN_FOLD = {"inside_radius_mm": 0.4, "fold_side": "behind", "relief_mm": 0.3, "slit": "centre-line"}
-OPEN_LASER = Cutter.model_validate(LASER.model_dump() | {"id": "open-laser", "fold": OPEN_FOLD})
+OPEN_LASER = Cutter.model_validate(LASER.model_dump(mode="json") | {"id": "open-laser", "fold": OPEN_FOLD})
 FINGERPRINT = "0123456789abcdef"
 
 

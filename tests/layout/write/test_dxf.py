@@ -49,7 +49,7 @@ def lettering(text: str) -> Lettering:
 
 
 def laser_with_layers(**layers: dict[str, object]) -> Cutter:
-    return Cutter.model_validate(LASER.model_dump() | {"layers": layers})
+    return Cutter.model_validate(LASER.model_dump(mode="json") | {"layers": layers})
 
 
 def test_gdal_reads_the_outlines_of_folds_as_they_were_planned(tmp_path: Path) -> None:
