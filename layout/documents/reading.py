@@ -83,7 +83,7 @@ LEAST_MM = 0.001  # mm; a micrometre, finer than any cutter
 MOST_MM = 2000.0  # mm; ten times the radius of the largest shipped disc
 LEAST_S, MOST_S = 0.001, 86_400.0  # s; a millisecond to a day
 FULL_TURN_DEG = 360.0
-# Stiffness, inertia, torque, ratio in their own units: the least an inertia of a gramme within a micrometre of its axis.
+# Stiffness, inertia, torque, ratio in their own units; the least is the inertia of a gramme within a micrometre.
 LEAST_OF_OTHER, MOST_OF_OTHER = 1e-15, 1e9
 
 _IS_NUMBER = BeforeValidator(_number)
