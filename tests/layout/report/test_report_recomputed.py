@@ -9,7 +9,7 @@ import math
 from collections import Counter
 from collections.abc import Callable
 from dataclasses import replace
-from itertools import chain
+from itertools import chain, pairwise
 from typing import Any
 
 import numpy as np
@@ -178,6 +178,85 @@ def assert_load_right(load: Json, layout: Json, movement: Movement) -> None:
     assert max(load_at(at_s, layout, movement) for at_s in releases_s) <= load["peak_nmm"] * 1.001
 
 
+def assert_start_right(start: Json, movement: Movement) -> None:
+    """From rest against a brake whose drag grows with ω²: with x = ω²/ω_T², dx/dangle = 2·τ·(1 − x)/(I·ω_T²)."""
+    drive = movement.drive
+    inertia_kg_m2 = drive.disc_inertia_kg_m2 + sum(part.inertia_kg_m2 * part.ratio**2 for part in drive.train)
+    full_rad_per_s, torque_nm = 2 * math.pi / movement.revolution_s, drive.surplus_torque_nmm / 1000
+    angle_rad = -math.log(1 - 0.99**2) * inertia_kg_m2 * full_rad_per_s**2 / (2 * torque_nm)
+    assert start["inertia_kg_m2"] == pytest.approx(inertia_kg_m2)
+    assert start["to_speed_deg"] == pytest.approx(math.degrees(angle_rad))
+    fastest_deg = math.degrees(angle_rad) * (movement.revolution_s / movement.fastest_revolution_s) ** 2
+    assert start["to_speed_at_fastest_deg"] == pytest.approx(fastest_deg)
+    # ω = 0.99·ω_T: t = t₀·½·ln((1 + 0.99)/(1 − 0.99))
+    assert start["time_constant_s"] == pytest.approx(inertia_kg_m2 * full_rad_per_s / torque_nm)
+    assert start["to_speed_s"] == pytest.approx(start["time_constant_s"] * math.log(1.99 / 0.01) / 2)
+
+
+def assert_torque_right(torque: Json, layout: Json, movement: Movement) -> None:
+    """Peak, mean, chord and the curve over the turn: right in the middle of each of its straight stretches."""
+    assert_load_right(torque, layout, movement)
+    at_s, torque_nmm = torque["over_the_turn"]["at_s"], torque["over_the_turn"]["torque_nmm"]
+    turn_s = movement.revolution_s
+    assert (at_s[0], at_s[-1]) == (-movement.before_music_deg / 360 * turn_s, at_s[0] + turn_s)
+    assert at_s == sorted(at_s)
+    assert max(torque_nmm) == pytest.approx(torque["peak_nmm"])
+    for left, right in pairwise(zip(at_s, torque_nmm, strict=True)):
+        middle_s = (left[0] + right[0]) / 2
+        near = [pluck for pluck in layout["projections"] if abs(pluck["sounds_s"] - middle_s) < 1]
+        if right[0] - left[0] > 1e-4:
+            told_nmm = (left[1] + right[1]) / 2
+            assert told_nmm == pytest.approx(load_at(middle_s, {"projections": near}, movement), abs=0.05)
+    work_nmm = sum(
+        tooth.stiffness_n_per_mm * tooth.lift_mm**2 / 2
+        for pluck in layout["projections"]
+        for tooth in movement.teeth
+        if tooth.track == pluck["track"] and tooth.usable
+    )
+    assert torque["mean_nmm"] == pytest.approx(work_nmm / (2 * math.pi))
+    released = {pluck["track"] for pluck in layout["projections"] if abs(pluck["sounds_s"] - torque["at_s"]) < 1e-6}
+    assert released <= {loaded["track"] for loaded in torque["chord"]}
+
+
+def assert_winding_right(winding: Json, torque: Json, movement: Movement) -> None:
+    """The spring let down from full by a thousandth of a turn of the disc at a time."""
+    wound = movement.drive.winding
+    spring, ratio = wound.spring, math.prod(wound.barrel_to_disc)
+    stiff_nmm = spring.elastic_modulus_n_per_mm2 * spring.width_mm * spring.thickness_mm**3 / 12 / spring.length_mm
+
+    def at_disc_nmm(turns: float) -> float:
+        return stiff_nmm * 2 * math.pi * (spring.wound_turns - turns / ratio) * wound.efficiency / ratio
+
+    needed_nmm = wound.friction_nmm + torque["peak_nmm"]
+    turns = 0
+    while turns / 1000 < spring.usable_turns * ratio and at_disc_nmm(turns / 1000) > needed_nmm:
+        turns += 1
+    assert winding["turns"] == pytest.approx(turns / 1000, abs=2e-3)
+    assert (winding["full_nmm"], winding["needed_nmm"]) == (pytest.approx(at_disc_nmm(0)), pytest.approx(needed_nmm))
+    assert winding["spent_nmm"] == pytest.approx(at_disc_nmm(turns / 1000), rel=1e-3)
+    left = [at_disc_nmm(turn) - wound.friction_nmm - torque["mean_nmm"] for turn in range(int(winding["turns"]) + 1)]
+    assert winding["last_turn_slows_share"] == pytest.approx(1 - math.sqrt(left[-1] / left[-2]))
+    assert winding["last_revolution_s"] / winding["first_revolution_s"] == pytest.approx(
+        1 / (1 - winding["winding_slows_share"])
+    )
+
+
+def assert_drive_right(drive: Json, layout: Json, movement: Movement) -> None:
+    assert drive["clearing_turn"] == {"track_count": len({pluck["track"] for pluck in layout["projections"]})}
+    known = [drive[part] is not None for part in ("start", "torque", "winding")]
+    assert known == [movement.drive is not None] * 3  # of the shipped movements one states all, the others nothing
+    if movement.drive is None:
+        assert drive["not_stated"] == ["drive", "teeth.stiffness_n_per_mm", "teeth.lift_mm"]
+        return
+    assert drive["not_stated"] == []
+    assert_start_right(drive["start"], movement)
+    assert_torque_right(drive["torque"], layout, movement)
+    assert_winding_right(drive["winding"], drive["torque"], movement)
+    wound = movement.drive.winding
+    by_train_s = math.prod(wound.disc_to_brake) / wound.brake_turns_per_s
+    assert drive["revolution"] == {"stated_s": movement.revolution_s, "by_brake_and_train_s": by_train_s}
+
+
 def assert_counted_right(laid_out: LaidOut) -> None:
     """Every number of the report against layout.json and the documents."""
     layout = json.loads(json.dumps(layout_record(laid_out, despite_findings=None)))
@@ -201,6 +280,7 @@ def assert_counted_right(laid_out: LaidOut) -> None:
     assert (report["load"] is None) == (report["no_load_because"] is not None)
     if report["load"]:
         assert_load_right(report["load"], layout, movement)
+    assert_drive_right(report["drive"], layout, movement)
     for best in report["tried"][:1]:
         assert (best["semitones"], best["kept"]) == (layout["transposed_semitones"], layout["worth"]["kept"])
 

@@ -15,9 +15,12 @@ from tests.layout.write.examples import (
     EMPTY_DISC,
     EXAMPLE_DISCS,
     FINGERPRINT,
+    MOSSBROOK,
     ONE_FOLD,
+    PRESS,
     THIN_WEB,
     THREE_FOLDS,
+    full_disc,
     laid_out_of,
 )
 
@@ -172,3 +175,35 @@ def test_a_number_that_is_none_is_refused_rather_than_written() -> None:
 
     with pytest.raises(ValueError, match="not JSON compliant"):
         write_report(laid_out)
+
+
+def test_the_drive_is_written_with_its_units_and_what_is_not_stated() -> None:
+    record = json.loads(write_report(laid_out_of(ONE_FOLD)))["drive"]
+
+    assert record == {
+        "start": None,
+        "torque": None,
+        "winding": None,
+        "revolution": {"stated_s": 66.0, "by_brake_and_train_s": None},
+        "clearing_turn": {"track_count": 1},
+        "not_stated": ["drive", "teeth.stiffness_n_per_mm", "teeth.lift_mm"],
+    }
+
+
+def test_a_stated_drive_is_written_whole() -> None:
+    record = json.loads(write_report(laid_out_of(full_disc(MOSSBROOK, PRESS))))["drive"]
+
+    assert list(record["start"]) == [
+        *("inertia_kg_m2", "time_constant_s", "to_speed_s", "to_speed_deg", "to_speed_at_fastest_deg"),
+        *("before_music_deg", "at_least"),
+    ]
+    assert list(record["torque"]) == ["peak_nmm", "limit_nmm", "at_s", "chord", "mean_nmm", "over_the_turn"]
+    assert list(record["winding"]) == [
+        *("full_nmm", "spent_nmm", "needed_nmm", "turns", "ended_by", "upper_bound"),
+        *("last_turn_slows_share", "winding_slows_share", "first_revolution_s", "last_revolution_s"),
+    ]
+    over_the_turn = record["torque"]["over_the_turn"]
+    assert len(over_the_turn["at_s"]) == len(over_the_turn["torque_nmm"]) > 67
+    # before_music_deg 16 of a turn of 90 s is 4 s
+    assert (over_the_turn["at_s"][0], over_the_turn["at_s"][-1]) == (-4.0, 86.0)
+    assert record["not_stated"] == []

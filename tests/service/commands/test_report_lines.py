@@ -194,9 +194,9 @@ def drive_told(**changes: Any) -> str:
 
 def test_the_drive_is_told_in_a_few_words() -> None:
     assert drive_told(start=START, winding=WINDING, clearing_turn={"track_count": 44}) == (
-        "99 % of its speed after 1.01 s and 2.99°; music may begin at 16°; 11.00 turns a winding, the last 1.6 % slower "
-        "at its end; after a change of disc let it make one turn unheard: the first note of each of 44 tracks may come "
-        "early or not at all"
+        "99 % of its speed after 1.01 s and 2.99°; music may begin at 16°; 11.00 turns a winding, the last 1.6 % "
+        "slower at its end; after a change of disc let it make one turn unheard: the first note of each of 44 tracks "
+        "may come early or not at all"
     )
 
 
