@@ -1,0 +1,318 @@
+import io
+import math
+import re
+from dataclasses import replace
+from functools import cache
+
+import ezdxf.filemanagement
+import numpy as np
+import pytest
+import shapely
+from shapely import affinity
+
+from layout.cut import plan_cuts
+from layout.cut.plan import CutPlan, Outlines
+from layout.cut.striking import hit_order
+from layout.mechanics.arrays import FloatArray
+from layout.place.disc import Disc
+from layout.write import write_dxf
+from layout.write.press_program import write_press_program
+from tests.layout.examples import cutter_with
+from tests.layout.write.examples import (
+    FERNHOLLOW,
+    FINGERPRINT,
+    LASER,
+    MOSSBROOK,
+    ONE_FOLD,
+    PRESS,
+    SLOTS_ON_A_PRESS,
+    TARNLIGHT,
+    THREE_LANCES,
+    disc_of,
+)
+from tests.layout.write.press_simulator import Alarm, DryPress, Strike
+
+# Words are written to 0.0001 mm and 0.0001°: half of both at the rim of the largest disc, 210 mm, and the drawing's own
+ROUNDING_MM = 0.5e-4 + 210 * math.radians(0.5e-4) + 1e-6
+# as the label side and the star side see them, clockwise and anticlockwise
+LABEL_SIDE_PRESS = cutter_with({"drawn_from": "label-side"}, PRESS)
+# (track, degrees), with every track from 1 to 17 and places all round
+MANY = [(1 + place % 17, (place * 137.508) % 360) for place in range(60)]
+DISCS = {
+    "three lances": THREE_LANCES,
+    "slots": SLOTS_ON_A_PRESS,
+    "many lances": disc_of(FERNHOLLOW, PRESS, MANY),
+    "many slots": disc_of(TARNLIGHT, PRESS, MANY),
+    "slots from the label side": disc_of(TARNLIGHT, LABEL_SIDE_PRESS, MANY),
+    "lances from the label side": disc_of(MOSSBROOK, LABEL_SIDE_PRESS, [(1, 20.0), (33, 200.0), (67, 270.0)]),
+}
+every_disc = pytest.mark.parametrize("disc", DISCS.values(), ids=DISCS.keys())
+
+
+@cache
+def planned(disc: Disc, *, title: str = "Example", not_good: str | None = None) -> CutPlan:
+    """A plan struck in the order of a press."""
+    plan = plan_cuts(disc, title=title, fingerprint=FINGERPRINT, not_good=not_good)
+    order = hit_order(disc)
+    at_mm = plan.at_mm[np.argsort(plan.order)][order]
+    return replace(plan, order=order, at_mm=at_mm)
+
+
+def dry_run(program: bytes, *, backlash_deg: float = 0.0, strike_word: str = "M20") -> list[Strike]:
+    return DryPress(strike_word=strike_word, backlash_deg=backlash_deg).run(program)
+
+
+def struck_mm(strikes: list[Strike], *, actual: bool = False) -> FloatArray:
+    """Shape (n, 2). Where on the blank each strike falls: the place at (slide, table angle), which is then under it."""
+    angle = np.radians([one.actual_table_deg if actual else one.table_deg for one in strikes])
+    slide = np.array([one.slide_mm for one in strikes])
+    return np.column_stack([slide * np.cos(angle), slide * np.sin(angle)])
+
+
+def drawn_hits_mm(plan: CutPlan, disc: Disc) -> FloatArray:
+    """The points of HITS in disc.dxf, read by ezdxf."""
+    document = ezdxf.filemanagement.read(io.StringIO(write_dxf(plan.disc, disc.cutter).decode("ascii")))
+    return np.array([point.dxf.location.vec2 for point in document.modelspace().query('POINT[layer=="HITS"]')])
+
+
+@every_disc
+def test_a_dry_run_strikes_where_the_drawing_has_its_hits(disc: Disc) -> None:
+    plan = planned(disc)
+
+    struck = struck_mm(dry_run(write_press_program(plan, disc)))
+
+    drawn = drawn_hits_mm(plan, disc)
+    assert len(struck) == len(drawn) == disc.projection_count
+    apart_mm = np.hypot(*(struck[:, None, :] - drawn[None, :, :]).transpose(2, 0, 1))
+    assert sorted(apart_mm.argmin(axis=1).tolist()) == list(range(len(drawn)))
+    assert apart_mm.min(axis=1).max() < ROUNDING_MM
+
+
+@every_disc
+def test_strikes_follow_the_plan(disc: Disc) -> None:
+    plan = planned(disc)
+
+    struck = struck_mm(dry_run(write_press_program(plan, disc)))
+
+    np.testing.assert_allclose(struck, plan.at_mm, atol=ROUNDING_MM, rtol=0)
+
+
+@every_disc
+def test_the_tool_strikes_the_openings_of_the_record_but_for_the_turn_it_is_said_to_have(disc: Disc) -> None:
+    plan = planned(disc)
+    program = write_press_program(plan, disc)
+    [opened] = [one for one in plan.record.entities if isinstance(one, Outlines) and one.layer == "AFTER_FORMING"]
+    # the openings stand in the order of plan_cuts; corners, and where round ends begin, are compared
+    stands = np.argsort(plan_cuts(disc, title="Example", fingerprint=FINGERPRINT, not_good=None).order)
+    drawn = [shapely.MultiPoint(points) for points in opened.points_mm[stands]]
+
+    turned_deg = []
+    for strike, projection in zip(dry_run(program), plan.order.tolist(), strict=True):
+        tool = disc.cutter.tools[strike.tool - 1]
+        half_length, half_width = tool.footprint_length_mm / 2, tool.footprint_width_mm / 2
+        ends = half_length if tool.makes == "lance" else half_length - half_width  # where round ends begin
+        # across the slide is the y axis of the table turned to 0
+        corners = shapely.MultiPoint(
+            [(strike.slide_mm + x, y) for x in (-half_width, half_width) for y in (-ends, ends)]
+        )
+        footprint = affinity.rotate(corners, strike.table_deg, origin=(0, 0))
+        exact_deg = math.degrees(math.asin(disc.pattern.strike_u_mm / strike.slide_mm))
+        ahead = disc.turning.direction * (-1 if disc.cutter.drawn_from == "star-side" else 1)
+        centre = shapely.centroid(footprint)
+        as_drawn = affinity.rotate(footprint, ahead * exact_deg, origin=(centre.x, centre.y))
+        assert shapely.hausdorff_distance(as_drawn, drawn[projection]) < 2 * ROUNDING_MM
+        turned_deg.append(abs(exact_deg))
+
+    [said] = re.findall(rb"TURNED UP TO ([0-9.]+) DEG", program)
+    assert float(said) == pytest.approx(max(turned_deg), abs=0.006)
+
+
+@pytest.mark.parametrize("name", ["many lances", "many slots", "slots from the label side"])
+def test_backlash_moves_every_hit_alike(name: str) -> None:
+    plan = planned(DISCS[name])
+
+    strikes = dry_run(write_press_program(plan, DISCS[name]), backlash_deg=0.3)
+
+    lag_deg = np.array([one.actual_table_deg - one.table_deg for one in strikes])
+    assert len(set(lag_deg.round(9))) == 1
+
+
+def test_a_table_that_comes_from_either_side_shows_its_backlash() -> None:
+    disc = disc_of(FERNHOLLOW, cutter_with({"press/turns_one_way": False}, PRESS), MANY)
+
+    strikes = dry_run(write_press_program(planned(disc), disc), backlash_deg=0.3)
+
+    lag_deg = np.array([one.actual_table_deg - one.table_deg for one in strikes])
+    assert len(set(lag_deg.round(9))) == 2
+
+
+@every_disc
+def test_no_turn_of_the_table_is_longer_than_half_a_turn_and_a_degree(disc: Disc) -> None:
+    press = DryPress(strike_word="M20")
+
+    press.run(write_press_program(planned(disc), disc))
+
+    assert 0 < press.greatest_turn_deg <= 181
+
+
+def test_a_program_word_by_word() -> None:
+    # tool L11 strikes 0.8 mm behind the edge: sqrt(45² + 0.8²) = 45.0071 mm; see test_hits for its angle
+    disc = disc_of(MOSSBROOK, PRESS, [(1, 0.0)])
+
+    program = write_press_program(planned(disc, title="Abendlied für Anna (2)"), disc).decode()
+
+    assert program.splitlines() == [
+        "%",
+        "(DISCWRIGHT 0.1.0)",
+        "(TITLE ABENDLIED FUR ANNA 2)",
+        "(MOVEMENT MOSSBROOK-67 REVISION 1)",
+        "(BLANK COLD-ROLLED STEEL, 0.6 MM THICK)",
+        "(CUTTER TURN-PRESS)",
+        "(FINGERPRINT 0123456789ABCDEF)",
+        "(TOOL L11, LANCE, TAB 1.1 WIDE, 1.55 DEEP)",
+        "(1 HITS, SEEN FROM THE STAR-SIDE)",
+        "(X SLIDE, RADIUS OF THE STRIKE POINT IN MM)",
+        "(C TABLE, ANGLE OF THE STRIKE POINT ON DISC.DXF IN DEGREES)",
+        "(C COUNTS ON OVER WHOLE TURNS, NO MOVE ABOVE HALF A TURN)",
+        "(TABLE COMES ONTO EVERY HIT WITH C FALLING)",
+        "(TOOL STANDS SQUARE TO THE SLIDE, TURNED UP TO 1.02 DEG)",
+        "(AGAINST DISC.DXF)",
+        "(HITS ONLY, HOLES BEFORE THEM AND RIM AFTER THEM ARE NOT IN)",
+        "(THIS PROGRAM)",
+        "(CAUTION, FOR TRAINED PEOPLE, LOCAL RULES COME FIRST)",
+        "(CAUTION, GUARDS IN PLACE, HANDS OUT, ONE PERSON AT THE)",
+        "(CONTROL)",
+        "(CAUTION, WEAR EYE PROTECTION, SLUGS FLY)",
+        "(CAUTION, FIRST RUN IT DRY, WITHOUT A BLANK, STROKE SWITCHED)",
+        "(OFF)",
+        "N1 G21 G90",
+        "N2 T2 M6 (TOOL L11)",
+        "N3 G0 X45.0071 C359.9815",
+        "N4 G0 X45.0071 C358.9815 (HIT 1)",
+        "N5 M20",
+        "N6 M30",
+        "%",
+    ]
+
+
+def test_a_press_with_words_of_its_own_gets_them() -> None:
+    words = {"press/strike_word": "M25", "press/change_word": "M16 T{tool}"}
+    disc = disc_of(TARNLIGHT, cutter_with(words, PRESS), [(2, 45.0)])
+
+    program = write_press_program(planned(disc), disc).decode()
+
+    # S22 is the third tool of the document
+    assert "\nN2 M16 T3 (TOOL S22)\n" in program
+    assert "\nN5 M25\n" in program
+    assert "M20" not in program
+
+
+def test_a_press_of_which_nothing_is_stated_has_the_usual_words() -> None:
+    disc = disc_of(MOSSBROOK, cutter_with({"press": None}, PRESS), [(1, 0.0)])
+
+    assert write_press_program(planned(disc), disc) == write_press_program(
+        planned(disc_of(MOSSBROOK, PRESS, [(1, 0.0)])), disc
+    )
+
+
+def test_a_disc_cut_despite_an_error_says_so_first() -> None:
+    program = write_press_program(planned(THREE_LANCES, not_good="trial piece"), THREE_LANCES).decode()
+
+    assert program.splitlines()[1] == "(NOT GOOD TO CUT, TRIAL PIECE)"
+
+
+def test_a_disc_good_to_cut_does_not_say_that_it_is_not() -> None:
+    assert b"NOT GOOD" not in write_press_program(planned(THREE_LANCES), THREE_LANCES)
+
+
+def test_where_no_tool_fits_the_program_stops_and_never_strikes_with_one() -> None:
+    disc = disc_of(MOSSBROOK, cutter_with({"tools": []}, PRESS), [(1, 0.0)])
+    program = write_press_program(planned(disc, not_good="trial piece"), disc)
+
+    press = DryPress(strike_word="M20")
+    with pytest.raises(Alarm, match="without a tool"):
+        press.run(program)
+
+    assert press.stops == 1
+    assert b"(TOOL NONE THAT FITS)" in program
+
+
+def test_a_disc_without_projections_ends_at_once() -> None:
+    disc = disc_of(MOSSBROOK, PRESS, [])
+    program = write_press_program(planned(disc), disc)
+
+    assert dry_run(program) == []
+    assert program.decode().splitlines()[-3:] == ["N1 G21 G90", "N2 M30", "%"]
+
+
+def test_a_laser_has_no_press_program() -> None:
+    with pytest.raises(ValueError, match="fibre-laser is no press"):
+        write_press_program(planned(ONE_FOLD), ONE_FOLD)
+    assert LASER.id == "fibre-laser"
+
+
+@pytest.mark.parametrize("title", ["100% (live): part 2", "音楽", "a\nM30\n%", "x" * 300, "\\U+97F3"])
+def test_no_title_breaks_the_program(title: str) -> None:
+    program = write_press_program(planned(THREE_LANCES, title=title), THREE_LANCES)
+
+    assert len(dry_run(program)) == 3
+    comments = [line for line in program.decode("ascii").splitlines() if line.startswith("(")]
+    assert max(len(line) for line in comments) <= 62
+    # four brackets, a percent sign or a colon inside would end or misread a comment
+    assert all(re.fullmatch(r"\([A-Z0-9 .,+/=-]+\)", line) for line in comments)
+
+
+def test_the_same_disc_gives_the_same_bytes() -> None:
+    disc = DISCS["many lances"]
+
+    assert write_press_program(planned(disc), disc) == write_press_program(planned(disc), disc)
+
+
+# What the dry run must see, so that the tests above can fail.
+
+
+def changed(program: bytes, pattern: str, by: str) -> bytes:
+    text, count = re.subn(pattern, by, program.decode(), count=1, flags=re.M)
+    assert count == 1
+    return text.encode()
+
+
+@pytest.fixture
+def program() -> bytes:
+    return write_press_program(planned(THREE_LANCES), THREE_LANCES)
+
+
+def test_the_dry_run_sees_a_missing_strike(program: bytes) -> None:
+    assert len(dry_run(changed(program, r"^N\d+ M20\n", ""))) == 2
+
+
+def test_the_dry_run_sees_another_tool(program: bytes) -> None:
+    tools = [{one.tool for one in dry_run(each)} for each in (program, changed(program, "T2", "T1"))]
+
+    assert tools == [{2}, {1}]
+
+
+def test_the_dry_run_sees_a_place_that_is_off(program: bytes) -> None:
+    moved = changed(program, r"X(\d+)\.(\d)(\d+ C\S+ \(HIT 2)", r"X\1.9\3")
+
+    apart_mm = np.hypot(*(struck_mm(dry_run(program)) - struck_mm(dry_run(moved))).T)
+
+    assert (apart_mm > 10 * ROUNDING_MM).tolist() == [False, True, False]
+
+
+@pytest.mark.parametrize(
+    ("pattern", "by", "alarm"),
+    [
+        (r"^N\d+ M30\n", "", "does not end"),
+        (r"^N1 G21 G90\n", "", "without G0, G21 and G90"),
+        (r" M6", "", "without a tool"),
+        (r"G0", "G1", "does not know G1"),
+        (r"\(HIT 1\)", "(HIT 1", "cannot read"),
+        (r"^N4 ", "N2 ", "no rising N"),
+        (r"^%\n\Z", "", "between two lines"),
+        (r"X(\d+)\.\d+", r"X\1", "does not know X"),
+    ],
+)
+def test_the_dry_run_stops_at_what_is_no_program(program: bytes, pattern: str, by: str, alarm: str) -> None:
+    with pytest.raises(Alarm, match=alarm):
+        dry_run(changed(program, pattern, by))
