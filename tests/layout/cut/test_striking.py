@@ -97,3 +97,15 @@ def test_of_two_near_each_other_on_a_track_the_one_ahead_is_struck_first(turns: 
     # The one ahead passes the row of star wheels first, so it sounds first: projection 0.
     assert pairs == [[1, 0]]
     assert order == [0, 1]
+
+
+@pytest.mark.parametrize("turns", ["clockwise", "anticlockwise"])
+@pytest.mark.parametrize("side", ["label-side", "star-side"])
+def test_forward_is_against_the_travel_so_what_sounds_later_comes_later(turns: str, side: str) -> None:
+    cutter = cutter_with({"drawn_from": side}, PRESS)
+
+    disc = disc_of(movement_with({"turns": turns}), [(1, 10.0), (1, 12.0), (1, 14.0)], cutter)
+
+    # 6 degrees a second: 12 degrees from one to the next
+    np.testing.assert_allclose(np.diff(hits_of(disc).forward_rad), math.radians(12), atol=1e-12)
+    assert hit_order(disc).tolist() == [0, 1, 2]

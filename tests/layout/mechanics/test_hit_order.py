@@ -5,6 +5,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from layout.mechanics.arrays import IntArray
 from layout.mechanics.hit_order import length, shortest_order
 from layout.mechanics.table import Table, table_moves, table_of
 
@@ -123,6 +124,31 @@ def test_without_speeds_a_turn_counts_as_the_way_along_the_outermost_circle() ->
     turned, slid = (int(table.cost(np.array(0), np.array(two))) for two in (1, 2))
 
     assert turned / slid == pytest.approx(20 / 15)
+
+
+@pytest.mark.parametrize(("one_way", "times"), [(True, 5 / 3), (False, 1.0)])
+def test_going_back_costs_a_degree_too_far_and_on_again(*, one_way: bool, times: float) -> None:
+    # three degrees on, three degrees back: 3 + 1 + 1 where the table comes from one side
+    table = table_with([(50, 0.0), (50, math.radians(3))], one_way=one_way)
+
+    on, back = int(table.cost(np.array(0), np.array(1))), int(table.cost(np.array(1), np.array(0)))
+
+    assert back / on == pytest.approx(times, rel=1e-6)
+
+
+def test_a_made_up_way_is_only_made_shorter() -> None:
+    random = np.random.default_rng(17)
+    for _ in range(10):
+        table = table_with(list(zip(random.uniform(36, 115, 60), random.uniform(0, 6.2, 60), strict=True)))
+        by_angle = np.lexsort((table.slide_ticks, table.turn_ticks))
+        by_ring = min(length(table, order) for order in rings_of(table))
+        assert length(table, shortest_order(table, NOTHING_FIRST)) < min(length(table, by_angle), by_ring)
+
+
+def rings_of(table: Table) -> list[IntArray]:
+    """Struck ring by ring, each round one turn from angle 0, by every number of rings up to ten."""
+    ranks = np.argsort(np.argsort(table.slide_ticks))
+    return [np.lexsort((table.turn_ticks, ranks * rings // len(ranks))) for rings in range(1, 11)]
 
 
 @pytest.mark.parametrize("speed", [1e-6, 1.0, 1e9])

@@ -43,6 +43,7 @@ DISCS = {
     "slots": SLOTS_ON_A_PRESS,
     "many lances": disc_of(FERNHOLLOW, PRESS, MANY),
     "many slots": disc_of(TARNLIGHT, PRESS, MANY),
+    "a crowd": disc_of(FERNHOLLOW, PRESS, [(1 + 3 * (place % 8), place * 0.7) for place in range(40)]),
     "slots from the label side": disc_of(TARNLIGHT, LABEL_SIDE_PRESS, MANY),
     "lances from the label side": disc_of(MOSSBROOK, LABEL_SIDE_PRESS, [(1, 20.0), (33, 200.0), (67, 270.0)]),
 }
@@ -127,7 +128,7 @@ def test_the_tool_strikes_the_openings_of_the_record_but_for_the_turn_it_is_said
     assert float(said) == pytest.approx(max(turned_deg), abs=0.006)
 
 
-@pytest.mark.parametrize("name", ["many lances", "many slots", "slots from the label side"])
+@pytest.mark.parametrize("name", ["many lances", "slots from the label side", "a crowd"])
 def test_backlash_moves_every_hit_alike(name: str) -> None:
     plan = planned(DISCS[name])
 
@@ -135,6 +136,13 @@ def test_backlash_moves_every_hit_alike(name: str) -> None:
 
     lag_deg = np.array([one.actual_table_deg - one.table_deg for one in strikes])
     assert len(set(lag_deg.round(9))) == 1
+
+
+def test_a_crowd_of_hits_has_the_table_go_back_and_come_on_again() -> None:
+    program = write_press_program(planned(DISCS["a crowd"]), DISCS["a crowd"]).decode()
+
+    # one block more than the first hit's own goes below the angle: those without a hit's number
+    assert len(re.findall(r"^N\d+ G0 X\S+ C\S+$", program, flags=re.M)) > 1
 
 
 def test_a_table_that_comes_from_either_side_shows_its_backlash() -> None:
