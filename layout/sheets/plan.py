@@ -1,0 +1,102 @@
+"""What laying discs on sheets gives: where each disc lies, in cutting order, and what is left.
+
+Coordinates are each sheet's own, in millimetres: the origin of a rectangle is its lower left
+corner, an outline keeps the frame it was given in.
+"""
+
+from dataclasses import dataclass
+
+from layout.mechanics.arrays import FloatArray, IntArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Piece:
+    """A flat piece of sheet.
+
+    Attributes:
+        outline_mm: Shape (k, 2). Its corners once round, the last not repeated.
+        openings_mm: The same of each opening in it.
+        area_mm2: Openings taken off.
+    """
+
+    outline_mm: FloatArray
+    openings_mm: tuple[FloatArray, ...]
+    area_mm2: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DiscKind:
+    """Discs of one diameter: the id they are asked for by, how many are wanted and how many are placed."""
+
+    id: str
+    diameter_mm: float
+    wanted_count: int
+    placed_count: int
+
+    @property
+    def missing_count(self) -> int:
+        """How many could not be placed."""
+        return self.wanted_count - self.placed_count
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Sheet:
+    """One sheet and the discs on it, in the order they are cut.
+
+    Attributes:
+        stock: The id of its kind of stock.
+        copy: Which sheet of this kind, from 1.
+        lot: The name of its lot; "" where none is stated.
+        piece: The sheet as it was.
+        clamps_mm: Shape (c, 4). Zones that stay free: least x, least y, greatest x, greatest y.
+        centres_mm: Shape (n, 2). Disc centres in cutting order.
+        kind: Shape (n,). Index into the plan's kinds.
+        radius_mm: Shape (n,).
+        used_ratio: Area of the discs, as a share of the piece.
+        travel_mm: Between the centres in cutting order, in straight lines.
+        cut_from: The end at which cutting begins: "left", "right", "bottom" or "top".
+        strip_mm: Width of the strips it goes by: discs of one strip are cut before those of the next.
+        way: How the discs were found: "rows", "rows and corners", "corners" or "grown".
+        remnants: What is worth keeping when the discs are out, largest first.
+    """
+
+    stock: str
+    copy: int
+    lot: str
+    piece: Piece
+    clamps_mm: FloatArray
+    centres_mm: FloatArray
+    kind: IntArray
+    radius_mm: FloatArray
+    used_ratio: float
+    travel_mm: float
+    cut_from: str
+    strip_mm: float
+    way: str
+    remnants: tuple[Piece, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class SheetPlan:
+    """All discs of a job on its sheets.
+
+    Attributes:
+        title: Of the job.
+        fingerprint: Of the job and the engine; the same job always gives the same.
+        gap_mm: Least distance of two rims.
+        kinds: What was asked for, in the job's order.
+        sheets: The sheets that discs lie on, in the order they are used.
+        untouched_count: Sheets of the job that are not needed, or hold no disc.
+    """
+
+    title: str
+    fingerprint: str
+    gap_mm: float
+    kinds: tuple[DiscKind, ...]
+    sheets: tuple[Sheet, ...]
+    untouched_count: int
+
+    @property
+    def complete(self) -> bool:
+        """Whether every disc asked for lies on a sheet."""
+        return not any(kind.missing_count for kind in self.kinds)

@@ -1,0 +1,47 @@
+import numpy as np
+from hypothesis import given, settings
+
+from layout.documents.sheets import SheetJob
+from layout.sheets import arrange_on_sheets
+from layout.sheets.plan import Sheet
+from tests.layout.sheets.jobs import job_of, jobs, sheet
+
+AXES = {"left": (0, 1), "right": (0, -1), "bottom": (1, 1), "top": (1, -1)}
+
+
+def along(on: Sheet) -> np.ndarray:
+    """How far each disc lies from the end where cutting begins, in cutting order."""
+    axis, sign = AXES[on.cut_from]
+    from_end = sign * on.centres_mm[:, axis]
+    return np.asarray(from_end - from_end.min())
+
+
+@settings(max_examples=12, deadline=None)
+@given(jobs())
+def test_no_disc_is_cut_after_one_of_a_later_strip(job: SheetJob) -> None:
+    for on in arrange_on_sheets(job).sheets:
+        strips = np.floor(along(on) / on.strip_mm + 1e-6)
+        assert (np.diff(strips) >= 0).all()
+
+
+def test_cutting_begins_far_from_the_clamps() -> None:
+    for x_mm, y_mm, begins in ((0, 200, "right"), (590, 200, "left"), (250, 0, "top"), (250, 590, "bottom")):
+        clamp = {"x_mm": x_mm, "y_mm": y_mm, "width_mm": 10, "height_mm": 10}
+        plan = arrange_on_sheets(job_of([sheet(600, 600, clamps=[clamp])], [(100, 6)]))
+
+        assert plan.sheets[0].cut_from == begins
+
+
+def test_rows_are_cut_to_and_fro_without_a_detour() -> None:
+    plan = arrange_on_sheets(job_of([sheet(400, 300)], [(100, 12)]))
+
+    # twelve centres on a square grid of 100: eleven steps of one pitch is the least there can be
+    assert round(plan.sheets[0].travel_mm, 6) == 1100
+
+
+@settings(max_examples=6, deadline=None)
+@given(jobs())
+def test_the_travel_told_is_that_of_the_order(job: SheetJob) -> None:
+    for on in arrange_on_sheets(job).sheets:
+        steps = [np.linalg.norm(b - a) for a, b in zip(on.centres_mm[:-1], on.centres_mm[1:], strict=True)]
+        assert abs(on.travel_mm - sum(steps)) < 1e-6
