@@ -20,6 +20,7 @@ from layout.check.drive import (
 )
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.forming import bends_are_wide_enough, bends_lie_across_the_rolling
+from layout.check.labels import labels_are_seen
 from layout.check.music import WholeTune, music_fits_the_turn, something_plays
 from layout.check.press import feet_stand_on_flat_metal, hits_fall_on_whole_metal, press_is_strong_enough
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
@@ -45,6 +46,7 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     holes_are_large_enough,
     bends_are_wide_enough,
     bends_lie_across_the_rolling,
+    labels_are_seen,
     star_clears_the_disc,
     star_is_reached,
     step_ends_at_the_next_point,

@@ -3,6 +3,8 @@
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
+from itertools import product
 
 import numpy as np
 import shapely
@@ -18,6 +20,7 @@ from layout.mechanics.arrays import FloatArray, frozen_floats
 # Heights of capitals, mm, tried from the first. ISO 3098 starts technical lettering at 1.8 mm; a laser's line
 # of 0.15 mm still leaves 1.2 mm legible (common practice); above 3 mm the lettering would crowd a small disc.
 LETTER_HEIGHTS_MM = (3.0, 2.5, 2.0, 1.8, 1.5, 1.2)
+EASILY_READ_MM = 1.8  # lines rather stand apart than that all stand together below this
 LINE_PITCH_HEIGHTS = 1.6  # heights of capitals from line to line: tails reach 1/3 below a line, 0.27 stay free
 STEP_MM = 0.5  # mm; how finely places are tried along a radius
 STEP_DEG = 15  # degrees; and around the disc
@@ -25,16 +28,25 @@ _HALF_TURN_DEG = 180
 # Below and above the centre first, then ever more to the sides.
 _AROUND_DEG = sorted(range(0, 360, STEP_DEG), key=lambda angle: (abs(abs(angle - 180) - 90), -angle))
 
-Block = list[tuple[FloatArray, ...]]  # the strokes of each line
+BLOCKS_KEPT = 512  # blocks; those of a few drawings, so that each is drawn once however many places are tried
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Line:
+    """One line of a block: its strokes, and the corners of the box they fill."""
+
+    strokes_mm: tuple[FloatArray, ...]
+    low_mm: FloatArray
+    high_mm: FloatArray
 
 
 def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> tuple[Lettering, ...]:
     """Lines of letters, as drawn: they read right on the side that is drawn.
 
-    All lines stand together if they fit so; if not, as many as do, and the rest somewhere else:
-    level if there is room, else turned so that they run along the rim. Where a line finds no room
-    that can be seen, it may stand where a clamp hides it in the movement, a warning even among the
-    openings. What fits nowhere is left out.
+    All lines stand together if they fit so and are easily read; if not, as many as do, and the rest
+    somewhere else: level if there is room, else turned so that they run along the rim; smaller where
+    no line fits otherwise. Where a line finds no room that can be seen, it may stand where a clamp
+    hides it in the movement, a warning even among the openings. What fits nowhere is left out.
 
     Args:
         rooms: Where there is room, as drawn.
@@ -92,18 +104,22 @@ def _first_that_fits(room: BaseGeometry, blocks: list[tuple[str, ...]], rim_mm: 
     for search in _searches(room, rim_mm) if blocks else ():
         shapely.prepare(search.room)
         near_mm = search.centres_mm[shapely.contains_xy(search.room, search.centres_mm)]
-        for texts in blocks:
-            for height_mm in LETTER_HEIGHTS_MM:
-                block = _block(texts, height_mm)
-                at_mm = _first_fit_mm(search.room, near_mm, block)
-                if at_mm is not None:
-                    return [
-                        Lettering(
-                            layer="MARKS", text=text, strokes_mm=tuple(_on_disc(s + at_mm, search) for s in strokes)
-                        )
-                        for text, strokes in zip(texts, block, strict=True)
-                    ]
+        for texts, height_mm in _tries(blocks) if len(near_mm) else ():
+            block = _block(texts, height_mm)
+            at_mm = _first_fit_mm(search.room, near_mm, block)
+            if at_mm is not None:
+                return [
+                    Lettering(layer="MARKS", text=text, strokes_mm=_on_disc(line, at_mm, search))
+                    for text, line in zip(texts, block, strict=True)
+                ]
     return []
+
+
+def _tries(blocks: list[tuple[str, ...]]) -> Iterator[tuple[tuple[str, ...], float]]:
+    """Every block with every height: easily read ones first, in them the fullest block first, in it the largest."""
+    for is_easy in (True, False):
+        heights_mm = [height_mm for height_mm in LETTER_HEIGHTS_MM if (height_mm >= EASILY_READ_MM) is is_easy]
+        yield from product(blocks, heights_mm)
 
 
 def _searches(room: BaseGeometry, rim_mm: float) -> Iterator[_Search]:
@@ -124,26 +140,35 @@ def _searches(room: BaseGeometry, rim_mm: float) -> Iterator[_Search]:
         yield _Search(room=turned, centres_mm=column_mm, turn_rad=turn_rad)
 
 
-def _on_disc(points_mm: FloatArray, search: _Search) -> FloatArray:
+def _on_disc(line: _Line, at_mm: FloatArray, search: _Search) -> tuple[FloatArray, ...]:
     cos, sin = math.cos(search.turn_rad), math.sin(search.turn_rad)
-    return frozen_floats(points_mm @ np.array([(cos, sin), (-sin, cos)]))
+    turned = np.array([(cos, sin), (-sin, cos)])
+    return tuple(frozen_floats((stroke + at_mm) @ turned) for stroke in line.strokes_mm)
 
 
-def _block(texts: tuple[str, ...], height_mm: float) -> Block:
-    """The strokes of each line, the block centred on (0, 0)."""
+@lru_cache(maxsize=BLOCKS_KEPT)
+def _block(texts: tuple[str, ...], height_mm: float) -> tuple[_Line, ...]:
+    """The lines of a block, which is centred on (0, 0)."""
     pitch_mm = height_mm * LINE_PITCH_HEIGHTS
     top_mm = ((len(texts) - 1) * pitch_mm - height_mm) / 2
-    down_mm = [np.array([0.0, top_mm - place * pitch_mm]) for place in range(len(texts))]
-    return [
-        tuple(frozen_floats(stroke + shift) for stroke in strokes_mm(text, height_mm))
-        for text, shift in zip(texts, down_mm, strict=True)
-    ]
-
-
-def _first_fit_mm(room: BaseGeometry, centres_mm: FloatArray, block: Block) -> FloatArray | None:
-    left_mm = centres_mm
-    for strokes in block:
+    lines = []
+    for place, text in enumerate(texts):
+        down_mm = np.array([0.0, top_mm - place * pitch_mm])
+        strokes = tuple(frozen_floats(stroke + down_mm) for stroke in strokes_mm(text, height_mm))
         points = np.concatenate(strokes)
-        low, high = points.min(axis=0) + left_mm, points.max(axis=0) + left_mm
+        lines.append(
+            _Line(
+                strokes_mm=strokes,
+                low_mm=frozen_floats(points.min(axis=0)),
+                high_mm=frozen_floats(points.max(axis=0)),
+            )
+        )
+    return tuple(lines)
+
+
+def _first_fit_mm(room: BaseGeometry, centres_mm: FloatArray, block: tuple[_Line, ...]) -> FloatArray | None:
+    left_mm = centres_mm
+    for line in block:
+        low, high = line.low_mm + left_mm, line.high_mm + left_mm
         left_mm = left_mm[shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))]
     return left_mm[0] if len(left_mm) else None

@@ -16,7 +16,15 @@ from layout.mechanics.arrays import IntArray
 from layout.place.disc import Disc
 
 
-def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None, part: str = "") -> CutPlan:
+def plan_cuts(
+    disc: Disc,
+    *,
+    title: str,
+    fingerprint: str,
+    not_good: str | None,
+    part: str = "",
+    order_number: str | None = None,
+) -> CutPlan:
     """The two drawings of a disc, as drawn, and the order of cutting.
 
     What is marked comes first, while the blank lies still; then inside before outside: projections
@@ -31,13 +39,21 @@ def plan_cuts(disc: Disc, *, title: str, fingerprint: str, not_good: str | None,
         fingerprint: Of all inputs.
         not_good: The reason for which a disc with error-level findings is cut all the same, else None.
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
+        order_number: The shop's, as it is lettered; None for none.
     """
     order = cutting_order(disc)
     at_mm = struck_at_mm(disc, order)
     mirror = -1 if disc.cutter.drawn_from == "star-side" else 1
     marking = _marking(disc, mirror)
     cut = _cut(disc, order)
-    words = Words(title=title, fingerprint=fingerprint, not_good=not_good, is_record=False, part=part)
+    words = Words(
+        title=title,
+        fingerprint=fingerprint,
+        not_good=not_good,
+        is_record=False,
+        part=part,
+        order_number=order_number,
+    )
     drawings = [
         _drawing(marking, entities, replace(words, is_record=is_record))
         for is_record, entities in ((False, cut), (True, (*formed_projections(disc, order), *cut)))

@@ -1,9 +1,11 @@
 """What the drawings say: the lines at the head of the file, and the lettering on the disc."""
 
+import math
 from dataclasses import dataclass
 
 from layout.cut.plain_letters import is_mostly_lost, plain_ascii
 from layout.documents.cutter import Cutter
+from layout.mechanics.bending import over_bend_rad
 from layout.place.disc import Disc
 from layout.version import ENGINE_VERSION
 
@@ -11,6 +13,8 @@ NOT_GOOD = "NOT GOOD TO CUT"
 RECORD = "RECORD - NOT FOR CUTTING"
 # Characters of a title on the disc: a longer one is hard to read at a glance; what does not fit is tried shorter.
 MOST_LETTERS = (32, 24, 16)
+# The labels from the top line to the lowest.
+_AS_READ = ("title", "part", "movement", "side", "burr", "order", "fingerprint")
 MOST_COMMENT = 250  # characters; DXF reference: strings of releases before 2000 end at 255 bytes
 
 
@@ -24,6 +28,7 @@ class Words:
         not_good: The reason for which a faulty disc is cut, if it is.
         is_record: Whether it is the record, which is never cut.
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
+        order_number: The shop's; None for none.
     """
 
     title: str
@@ -31,6 +36,7 @@ class Words:
     not_good: str | None
     is_record: bool
     part: str = ""
+    order_number: str | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -60,6 +66,7 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
         f"discwright {ENGINE_VERSION}",
         f"title: {words.title}",
         *([words.part] if words.part else []),
+        *([] if words.order_number is None else [f"order: {words.order_number}"]),
         f"movement: {movement.id} revision {movement.revision}",
         f"blank: {movement.disc.material}, {movement.disc.thickness_mm:g} mm thick",
         f"cutter: {cutter.id}",
@@ -73,27 +80,36 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
 
 
 def inscriptions(disc: Disc, words: Words) -> tuple[Inscription, ...]:
-    """The lines to engrave, the ones that must stay longest first: warnings, side, disc, movement and so on.
+    """The lines to engrave, the ones that must stay longest first; only the warnings where the cutter has no labels.
 
-    Fingerprint and title come last. A title that is mostly lost in ASCII is left out; so is one of blanks.
+    Warnings, side, disc of a set, movement, order, burr; fingerprint and title come last. A title that is mostly lost
+    in ASCII is left out; so is one of blanks.
     """
-    movement, title = disc.movement, plain_ascii(words.title)
     warnings = (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
     lines = [Inscription(forms=(text,), row=row, is_warning=True) for row, text in enumerate(warnings)]
-    below = len(warnings)
-    under_title = below + 1 + (words.part != "")
-    lines += [
-        Inscription(forms=(_side(disc.cutter).upper(),), row=under_title + 1),
-        *([Inscription(forms=(words.part.upper(),), row=below + 1)] if words.part else []),
-        Inscription(
-            forms=(_shortened(plain_ascii(f"{movement.id} rev {movement.revision}"), MOST_LETTERS[0]),), row=under_title
-        ),
-        Inscription(forms=(words.fingerprint,), row=under_title + 2),
-    ]
-    if title and not is_mostly_lost(words.title):
-        forms = dict.fromkeys(_shortened(title, most) for most in MOST_LETTERS)
-        lines.append(Inscription(forms=tuple(forms), row=below))
+    if disc.cutter.labels:
+        lines += _labels(disc, words, below=len(warnings))
     return tuple(lines)
+
+
+def _labels(disc: Disc, words: Words, *, below: int) -> list[Inscription]:
+    """The lines under so many warnings: their forms in the order of their worth, their rows as they are read."""
+    movement, title = disc.movement, plain_ascii(words.title)
+    named = _shortened(plain_ascii(f"{movement.id} rev {movement.revision}"), MOST_LETTERS[0])
+    forms = {
+        "side": (_side(disc.cutter).upper(),),
+        "part": (words.part.upper(),) if words.part else (),
+        "movement": (named,),
+        # Never shortened: part of a number is another number.
+        "order": () if words.order_number is None else (f"ORDER {words.order_number}", words.order_number),
+        "burr": () if disc.cutter.burr_side is None else (f"BURR ON {_plainly(disc.cutter.burr_side).upper()}",),
+        "fingerprint": (words.fingerprint,),
+        "title": tuple(dict.fromkeys(_shortened(title, most) for most in MOST_LETTERS))
+        if title and not is_mostly_lost(words.title)
+        else (),
+    }
+    read = [name for name in _AS_READ if forms[name]]
+    return [Inscription(forms=says, row=below + read.index(name)) for name, says in forms.items() if says]
 
 
 def _shortened(text: str, most: int) -> str:
@@ -101,7 +117,11 @@ def _shortened(text: str, most: int) -> str:
 
 
 def _side(cutter: Cutter) -> str:
-    return cutter.drawn_from.replace("-", " ")
+    return _plainly(cutter.drawn_from)
+
+
+def _plainly(side: str) -> str:
+    return side.replace("-", " ")
 
 
 def _how_it_is_drawn(disc: Disc) -> list[str]:
@@ -109,6 +129,13 @@ def _how_it_is_drawn(disc: Disc) -> list[str]:
     lines = ["outlines are finished edges; kerf is not added"]
     if cutter.fold is not None and cutter.fold.slit == "centre-line" and disc.pattern.making == "fold":
         lines.append(f"open slits are cut along their middle, one kerf of {cutter.kerf_mm:g} mm wide")
+    if cutter.fold is not None and cutter.fold.springback is not None and disc.pattern.making == "fold":
+        bent_deg = math.degrees(over_bend_rad(math.radians(cutter.fold.springback.opens_deg)))
+        lines.append(
+            f"folds: to the star side, to stand at 90 degrees; bend to {bent_deg:.4g} degrees, for they open again"
+        )
+    if cutter.burr_side is not None:
+        lines.append(f"burr: on the {_plainly(cutter.burr_side)}")
     if cutter.kind == "punch-press":
         tool = f"tool {disc.pattern.tool}" if disc.pattern.tool else "this press has no tool that fits"
         lines.append(f"hits: one point for each projection, where the tool strikes; {tool}")

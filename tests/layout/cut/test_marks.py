@@ -17,6 +17,7 @@ from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, dis
 
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
 FINGERPRINT = "0123456789abcdef"
+BURR = "BURR ON STAR SIDE"  # where the shipped laser leaves it
 # Two tracks right beside the centre hole and right at the rim leave no band free; between them is metal.
 CROWDED = {
     "disc/outer_diameter_mm": 104,
@@ -27,8 +28,10 @@ CROWDED = {
 }
 
 
-def plan_of(disc: Disc, title: str = "The Long Meadow", not_good: str | None = None) -> CutPlan:
-    return plan_cuts(disc, title=title, fingerprint=FINGERPRINT, not_good=not_good)
+def plan_of(
+    disc: Disc, title: str = "The Long Meadow", not_good: str | None = None, order_number: str | None = None
+) -> CutPlan:
+    return plan_cuts(disc, title=title, fingerprint=FINGERPRINT, not_good=not_good, order_number=order_number)
 
 
 def lettering_of(drawing: Drawing) -> list[Lettering]:
@@ -110,8 +113,19 @@ def test_a_small_disc_with_a_long_title_and_a_warning_still_says_all(cutter: Cut
     plan = plan_of(disc_of(SHIPPED[2], [(1, 1.0)], cutter), title="The Ballad of the Miller " * 4, not_good="trial")
 
     expected = {"NOT GOOD TO CUT", side, "tarnlight-17 rev 1", FINGERPRINT, "The Ballad of the Miller The..."}
+    expected |= {BURR} if cutter is LASER else set()
     assert set(texts(plan.disc)) == expected
     assert set(texts(plan.record)) == expected | {"RECORD - NOT FOR CUTTING"}
+
+
+@pytest.mark.parametrize("movement", SHIPPED[:2], ids=lambda movement: movement.id)
+def test_lines_stand_apart_rather_than_small(movement: Movement) -> None:
+    plan = plan_of(disc_of(movement, [(1, 1.0)]), title="The Ballad of the Miller", order_number="2026/118-B")
+
+    # ISO 3098 starts technical lettering at 1.8 mm; every line here has a capital or a figure, which is as tall.
+    heights_mm = [np.ptp(np.concatenate(line.strokes_mm)[:, 1]) for line in lettering_of(plan.disc)]
+    assert len(heights_mm) == 6
+    assert min(heights_mm) >= 1.8 - 1e-9
 
 
 def test_a_title_is_shortened_further_before_anything_else_is_left_out() -> None:
@@ -120,7 +134,7 @@ def test_a_title_is_shortened_further_before_anything_else_is_left_out() -> None
 
     plan = plan_of(disc_of(movement, [(1, 1.0)]), title="The Ballad of the Miller and his Sons")
 
-    assert set(texts(plan.disc)) == {"LABEL SIDE", "plain-3 rev 1", FINGERPRINT, "The Ballad of..."}
+    assert set(texts(plan.disc)) == {"LABEL SIDE", "plain-3 rev 1", BURR, FINGERPRINT, "The Ballad of..."}
 
 
 def test_letters_along_the_rim_are_turned_but_never_mirrored() -> None:
@@ -130,7 +144,7 @@ def test_letters_along_the_rim_are_turned_but_never_mirrored() -> None:
     plan = plan_of(disc_of(tarnlight, [], STAR_SIDE_LASER), title="LLLLLLLLLLLL", not_good="a trial piece")
 
     # L is drawn down, then to the right: (0, -1) x (1, 0) = +1, as long as it is only turned.
-    assert len(lettering_of(plan.record)) == 6
+    assert len(lettering_of(plan.record)) == 7
     [line] = [line for line in lettering_of(plan.record) if line.text.startswith("L")]
     tall, bar = (stroke[-1] - stroke[0] for stroke in line.strokes_mm[:2])
     assert tall[0] * bar[1] - tall[1] * bar[0] > 0
@@ -142,14 +156,78 @@ def test_letters_along_the_rim_are_turned_but_never_mirrored() -> None:
 def test_lettering_says_title_movement_side_and_fingerprint() -> None:
     plan = plan_of(disc_of(PLAIN, [(1, 1.0)]))
 
-    assert texts(plan.disc) == ["The Long Meadow", "plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    assert texts(plan.disc) == ["The Long Meadow", "plain-3 rev 1", "LABEL SIDE", BURR, FINGERPRINT]
     assert texts(plan.record) == ["RECORD - NOT FOR CUTTING", *texts(plan.disc)]
+
+
+def test_the_order_number_stands_under_the_sides_and_in_the_head() -> None:
+    plan = plan_of(disc_of(PLAIN, [(1, 1.0)]), order_number="2026/118-B")
+
+    assert texts(plan.disc) == ["The Long Meadow", "plain-3 rev 1", "LABEL SIDE", BURR, "ORDER 2026/118-B", FINGERPRINT]
+    tops = [max(stroke[:, 1].max() for stroke in line.strokes_mm) for line in lettering_of(plan.disc)]
+    assert tops == sorted(tops, reverse=True)  # read from the top
+    assert plan.disc.comments[1:3] == ("title: The Long Meadow", "order: 2026/118-B")
+    assert plan.record.comments[2:4] == plan.disc.comments[1:3]
+
+
+def test_an_order_number_is_whole_or_missing_never_shortened() -> None:
+    # Only a band of 3.63 mm up to the rim is free, of which a line of 1.2 mm keeps 0.5 mm clear on both sides.
+    movement = movement_with(CROWDED | {"disc/outer_diameter_mm": 109})
+    number = "2026-0000118/B-" + "7" * 25
+
+    band = texts(plan_of(disc_of(movement, [(1, 1.0)]), title=" ", order_number=number).disc)
+    room = texts(plan_of(disc_of(PLAIN, []), order_number=number).disc)
+
+    assert not any("2026" in text and number not in text for text in band)
+    assert f"ORDER {number}" in room
+
+
+@pytest.mark.parametrize("burr_side", ["label-side", "star-side"])
+def test_the_burr_side_is_lettered_and_stands_in_the_head(burr_side: str) -> None:
+    plan = plan_of(disc_of(PLAIN, [(1, 1.0)], cutter_with({"burr_side": burr_side})))
+
+    side = burr_side.replace("-", " ")
+    assert f"BURR ON {side.upper()}" in texts(plan.disc)
+    assert f"burr: on the {side}" in plan.disc.comments
+
+
+def test_a_burr_side_that_is_not_stated_is_not_told() -> None:
+    plan = plan_of(disc_of(PLAIN, [(1, 1.0)], cutter_with({"burr_side": None})))
+
+    assert not any("burr" in line.lower() for line in (*texts(plan.record), *plan.record.comments))
+
+
+def test_a_cutter_without_labels_letters_its_warnings_and_the_index_mark_alone() -> None:
+    disc = disc_of(PLAIN, [(1, 1.0)], cutter_with({"labels": False}))
+
+    good, faulty = plan_of(disc, order_number="118"), plan_of(disc, not_good="a trial piece")
+
+    assert texts(good.disc) == []
+    assert texts(good.record) == ["RECORD - NOT FOR CUTTING"]
+    assert texts(faulty.disc) == ["NOT GOOD TO CUT"]
+    assert texts(faulty.record) == ["RECORD - NOT FOR CUTTING", "NOT GOOD TO CUT"]
+    assert index_mark(good.disc).points_mm == pytest.approx(index_mark(plan_of(disc_of(PLAIN, [])).disc).points_mm)
+    assert "order: 118" in good.disc.comments
+
+
+def test_the_head_says_how_far_a_fold_is_bent() -> None:
+    folds = "folds: to the star side, to stand at 90 degrees; bend to {} degrees, for they open again"
+
+    soft, stiff = (
+        plan_of(disc_of(PLAIN, [], cutter_with({"fold/springback": {"opens_deg": opens}}))).disc for opens in (1.5, 2)
+    )
+    unknown = plan_of(disc_of(PLAIN, [], cutter_with({"fold/springback": None}))).disc
+    slots = plan_of(disc_of(SHIPPED[2], [])).disc
+
+    assert folds.format("91.5") in soft.comments
+    assert folds.format("92") in stiff.comments
+    assert not any(line.startswith("folds") for line in (*unknown.comments, *slots.comments))
 
 
 def test_lettering_warns_first_that_a_disc_is_not_good_to_cut() -> None:
     plan = plan_of(disc_of(PLAIN, [(1, 1.0)], STAR_SIDE_LASER), not_good="a trial piece")
 
-    assert texts(plan.disc) == ["NOT GOOD TO CUT", "The Long Meadow", "plain-3 rev 1", "STAR SIDE", FINGERPRINT]
+    assert texts(plan.disc) == ["NOT GOOD TO CUT", "The Long Meadow", "plain-3 rev 1", "STAR SIDE", BURR, FINGERPRINT]
     assert texts(plan.record)[:2] == ["RECORD - NOT FOR CUTTING", "NOT GOOD TO CUT"]
 
 
@@ -186,7 +264,7 @@ def test_where_a_clamp_hides_all_room_there_is_still_all_that_must_be_said() -> 
     good = plan_of(disc_of(clamped, []))
 
     assert texts(plan.disc) == ["NOT GOOD TO CUT", *texts(good.disc)]
-    assert texts(good.disc) == ["The Long Meadow", "plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    assert texts(good.disc) == ["The Long Meadow", "plain-3 rev 1", "LABEL SIDE", BURR, FINGERPRINT]
     assert index_mark(plan.disc).points_mm[0, :, 0].max() < 48.98
 
 
@@ -238,14 +316,14 @@ def test_a_title_is_engraved_in_plain_letters_and_shortened() -> None:
 def test_a_title_without_letters_the_font_knows_is_left_off_the_disc_but_not_out_of_the_file(title: str) -> None:
     plan = plan_of(disc_of(PLAIN, []), title=title)
 
-    assert texts(plan.disc) == ["plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    assert texts(plan.disc) == ["plain-3 rev 1", "LABEL SIDE", BURR, FINGERPRINT]
     assert f"title: {title}" in plan.disc.comments
 
 
 def test_a_title_of_blanks_is_left_out() -> None:
     plan = plan_of(disc_of(PLAIN, []), title=" \t ")
 
-    assert texts(plan.disc) == ["plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    assert texts(plan.disc) == ["plain-3 rev 1", "LABEL SIDE", BURR, FINGERPRINT]
 
 
 def test_comments_say_what_the_drawing_is() -> None:
@@ -272,7 +350,7 @@ def test_a_disc_of_a_set_says_which_it_is_under_its_title_and_in_the_head() -> N
     plan = plan_cuts(disc, title="The Long Meadow", fingerprint=FINGERPRINT, not_good=None, part="disc 2 of 3")
     alone = plan_cuts(disc, title="The Long Meadow", fingerprint=FINGERPRINT, not_good=None)
 
-    lines = ["The Long Meadow", "DISC 2 OF 3", "plain-3 rev 1", "LABEL SIDE", FINGERPRINT]
+    lines = ["The Long Meadow", "DISC 2 OF 3", "plain-3 rev 1", "LABEL SIDE", BURR, FINGERPRINT]
     assert sorted(texts(plan.disc)) == sorted(lines)
     assert texts(alone.disc) == [line for line in lines if line != "DISC 2 OF 3"]
     assert plan.disc.comments[1:3] == ("title: The Long Meadow", "disc 2 of 3")
@@ -334,7 +412,7 @@ def test_marks_are_clear_of_openings_holes_tracks_and_keep_outs(
     dice = np.random.default_rng(seed)
     plucks = [(int(dice.integers(1, len(movement.tracks) + 1)), float(dice.uniform(0, 30))) for _ in range(60)]
 
-    plan = plan_of(disc_of(movement, plucks, cutter), not_good=not_good)
+    plan = plan_of(disc_of(movement, plucks, cutter), not_good=not_good, order_number="2026/118-B")
 
     for drawing in (plan.disc, plan.record):
         marks = strokes_of(drawing)
@@ -343,7 +421,7 @@ def test_marks_are_clear_of_openings_holes_tracks_and_keep_outs(
         said = texts(drawing)
         assert said[0] == ("NOT GOOD TO CUT" if not_good and drawing is plan.disc else said[0])
         assert sorted(said) == sorted(set(said))
-        assert {FINGERPRINT, "The Long Meadow", f"{movement.id} rev 1"} <= set(said)
+        assert {FINGERPRINT, "The Long Meadow", f"{movement.id} rev 1", "ORDER 2026/118-B"} <= set(said)
         assert f"{'STAR' if cutter.drawn_from == 'star-side' else 'LABEL'} SIDE" in said
 
 
