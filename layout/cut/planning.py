@@ -8,8 +8,9 @@ from layout.cut.blank import holes, rim
 from layout.cut.inscribing import lettering
 from layout.cut.marks import index_mark
 from layout.cut.mirroring import mirrored, mirrored_points_mm
+from layout.cut.path import cutting_order, path_of
 from layout.cut.plan import CutPlan, Drawing, Entity, Outlines
-from layout.cut.projections import cut_projections, cutting_order, formed_projections, struck_at_mm
+from layout.cut.projections import cut_projections, formed_projections, struck_at_mm
 from layout.cut.room import Rooms
 from layout.cut.wording import Words, head_lines, inscriptions
 from layout.mechanics.arrays import IntArray
@@ -27,10 +28,11 @@ def plan_cuts(
 ) -> CutPlan:
     """The two drawings of a disc, as drawn, and the order of cutting.
 
-    What is marked comes first, while the blank lies still; then inside before outside: projections
-    by track and angle, feature holes, centre hole; the rim last, since it sets the disc free. Lances
-    come after the holes, so that no hole is struck beside formed metal (common practice: formed
-    hits last). Drawings from the star side are mirrored in Y, but for the lettering, which reads
+    What is marked comes first, while the blank lies still; then inside before outside: projections,
+    feature holes, centre hole; the rim last, since it sets the disc free. Projections follow one
+    another so that the machine travels little, on a laser also so that it does not heat one place.
+    Lances come after the holes, so that no hole is struck beside formed metal (common practice:
+    formed hits last). Drawings from the star side are mirrored in Y, but for the lettering, which reads
     right on the side drawn.
 
     Args:
@@ -69,6 +71,7 @@ def plan_cuts(
         order=order,
         at_mm=at_mm if mirror > 0 else mirrored_points_mm(at_mm),
         tool=disc.pattern.tool,
+        path=path_of(disc, drawings[0], order),
     )
 
 

@@ -3,15 +3,10 @@
 import numpy as np
 
 from layout.cut.plan import Circles, Entity, LayerName, Outlines, Points
-from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats, frozen_ints
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Shape
 from layout.place.disc import Disc
-
-
-def cutting_order(disc: Disc) -> IntArray:
-    """Shape (n,). Projection indices by track from the innermost, then by angle: inside before outside."""
-    return frozen_ints(np.lexsort((disc.edge_angle_rad, disc.track_index)))
 
 
 def struck_at_mm(disc: Disc, order: IntArray) -> FloatArray:

@@ -1,0 +1,154 @@
+"""The way of the machine over the disc: the order of the cuts, and what is travelled.
+
+A laser goes from cut to cut on a short round trip from the disc centre, where the marks end and the centre hole
+waits, and back. It keeps off heat by one rule: two openings with less than HOT_WEB_MM of metal between them are
+never cut one directly after the other, as long as there is anything else to cut in between.
+"""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+
+from layout.cut.plan import Circles, CutPath, Drawing, Entity, Lettering, Outlines, Points
+from layout.cut.striking import hit_order, strike_path
+from layout.cut.touring import short_round_trip
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.spacing import core_geometries
+from layout.place.disc import Disc
+
+# mm; a web between two openings is heated from both, and loses its heat only along itself, L²/a for a length L: a
+# tab 1.2 mm wide in steel with a = 14 mm²/s (handbook value for mild steel at room temperature, from memory) takes
+# 0.1 s, about one cut with its piercing. Wider than twice a sheet of 0.5 mm, a web passes heat on across itself.
+HOT_WEB_MM = 1.0
+_SAME_PLACE_MM = 1e-6  # mm; a nanometre: a contour that starts where its lead ends is not pierced again
+
+
+def cutting_order(disc: Disc) -> IntArray:
+    """Shape (n,). Projection indices in cutting order: by the press's own rule, or by a laser's (see above)."""
+    if disc.cutter.kind == "punch-press":
+        return hit_order(disc)
+    return short_round_trip(_begun_at_mm(disc), hot_pairs(disc))
+
+
+def hot_pairs(disc: Disc) -> IntArray:
+    """Shape (m, 2). Pairs of projections, the lower index first, with a web of less than HOT_WEB_MM between them."""
+    pattern = disc.pattern
+    placed_mm = on_disc_mm(pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    openings = core_geometries(placed_mm)
+    within_mm = HOT_WEB_MM + 2 * pattern.core_round_mm
+    pairs = shapely.STRtree(openings).query(openings, predicate="dwithin", distance=within_mm).T
+    pairs = pairs[pairs[:, 0] < pairs[:, 1]]
+    return np.asarray(pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))], dtype=np.int64)
+
+
+def _begun_at_mm(disc: Disc) -> FloatArray:
+    """Shape (n, 2). Where each cut begins; of an open slit, which ends elsewhere, the middle between both."""
+    cut = disc.pattern.cut
+    if cut is None:
+        at_mm = np.zeros((1, 2))
+    else:
+        at_mm = cut.points_mm[:1] if cut.closed else (cut.points_mm[:1] + cut.points_mm[-1:]) / 2
+    return on_disc_mm(at_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)[:, 0]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Strokes:
+    """Lines the machine follows, in their order: starts and ends, shape (n, 2), and lengths, shape (n,)."""
+
+    start_mm: FloatArray
+    end_mm: FloatArray
+    length_mm: FloatArray
+
+
+def path_of(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
+    """What the machine travels for a drawing.
+
+    A circle is begun at its +X side. Of a press only the marks and the hits count: its holes and rim are
+    the blank's, and how they are struck is not stated.
+
+    Args:
+        disc: The disc.
+        drawing: What is cut and marked, in cutting order.
+        order: Shape (n,). Projection indices in cutting order.
+    """
+    marked = [entity for entity in drawing.entities if entity.layer == "MARKS"]
+    if disc.cutter.kind == "punch-press":
+        struck = strike_path(disc, order)
+        return CutPath(
+            cut_length_mm=0.0,
+            mark_length_mm=_length_mm(marked),
+            rapid_length_mm=_rapid_mm(marked),
+            pierce_count=0,
+            hit_count=len(order),
+            turned_rad=struck.turned_rad,
+            slid_mm=struck.slid_mm,
+            tool_change_count=struck.tool_change_count,
+        )
+    cut = [entity for entity in drawing.entities if entity.layer != "MARKS"]
+    return CutPath(
+        cut_length_mm=_length_mm(cut),
+        mark_length_mm=_length_mm(marked),
+        rapid_length_mm=_rapid_mm(list(drawing.entities)),
+        pierce_count=_pierces(cut),
+        hit_count=0,
+        turned_rad=0.0,
+        slid_mm=0.0,
+        tool_change_count=0,
+    )
+
+
+def _length_mm(entities: list[Entity]) -> float:
+    return float(sum(strokes.length_mm.sum() for entity in entities for strokes in _strokes(entity)))
+
+
+def _rapid_mm(entities: list[Entity]) -> float:
+    """From the centre to the first start, from each end to the next start, and back to the centre."""
+    strokes = [strokes for entity in entities for strokes in _strokes(entity)]
+    centre_mm = np.zeros((1, 2))
+    left_mm = np.concatenate([centre_mm, *(part.end_mm for part in strokes)])
+    reached_mm = np.concatenate([*(part.start_mm for part in strokes), centre_mm])
+    return float(np.hypot(*(reached_mm - left_mm).T).sum())
+
+
+def _pierces(entities: list[Entity]) -> int:
+    """Starts that lie not where the cut before has ended."""
+    strokes = [strokes for entity in entities for strokes in _strokes(entity)]
+    if not strokes:
+        return 0
+    start_mm = np.concatenate([part.start_mm for part in strokes])
+    end_mm = np.concatenate([part.end_mm for part in strokes])
+    away_mm = np.hypot(*(start_mm[1:] - end_mm[:-1]).T)
+    return 1 + int((away_mm > _SAME_PLACE_MM).sum())
+
+
+def _strokes(entity: Entity) -> Iterator[_Strokes]:
+    match entity:
+        case Outlines():
+            start_mm = entity.points_mm[:, 0]
+            end_mm = start_mm if entity.closed else entity.points_mm[:, -1]
+            yield _Strokes(start_mm=start_mm, end_mm=end_mm, length_mm=_around_mm(entity))
+        case Circles():
+            start_mm = entity.centres_mm + np.column_stack([entity.radius_mm, np.zeros(len(entity.radius_mm))])
+            yield _Strokes(start_mm=start_mm, end_mm=start_mm, length_mm=2 * np.pi * entity.radius_mm)
+        case Lettering():
+            for stroke in entity.strokes_mm:
+                length_mm = np.hypot(*np.diff(stroke, axis=0).T).sum(keepdims=True)
+                yield _Strokes(start_mm=stroke[:1], end_mm=stroke[-1:], length_mm=length_mm)
+        case Points():
+            return
+
+
+def _around_mm(outlines: Outlines) -> FloatArray:
+    """Shape (n,). The length of each outline.
+
+    DXF reference: bulge b = tan(θ/4). On a chord c the radius is c·(1 + b²)/(4b), so the arc is c·(1 + b²)·atan(b)/b.
+    """
+    following_mm = np.roll(outlines.points_mm, -1, axis=1)
+    chord_mm = np.hypot(*np.moveaxis(following_mm - outlines.points_mm, -1, 0))
+    bulge = np.abs(outlines.bulges)
+    arc_of_chord = np.divide((1 + bulge**2) * np.arctan(bulge), bulge, out=np.ones_like(bulge), where=bulge > 0)
+    pieces = chord_mm * arc_of_chord
+    return np.asarray(pieces.sum(axis=1) if outlines.closed else pieces[:, :-1].sum(axis=1))
