@@ -18,10 +18,12 @@ from layout.check.drive import (
     train_gives_the_turn,
     winding_lasts,
 )
+from layout.check.feature_sizes import features_suit_the_sheet
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.forming import bends_are_wide_enough, bends_lie_across_the_rolling
 from layout.check.labels import labels_are_seen
 from layout.check.music import WholeTune, music_fits_the_turn, something_plays
+from layout.check.net_section import metal_holds_along_rays_and_rings
 from layout.check.press import feet_stand_on_flat_metal, hits_fall_on_whole_metal, press_is_strong_enough
 from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_is_clear, star_wheels_keep_up
 from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
@@ -34,6 +36,7 @@ from layout.check.star_wheel import (
     tip_clears_the_bend,
     tooth_is_released,
 )
+from layout.check.timing import fast_passages_are_held
 from layout.check.webs import webs_between_openings_hold
 from layout.place.disc import Disc
 
@@ -62,6 +65,8 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     webs_to_features_hold,
     keep_outs_are_clear,
     webs_between_openings_hold,
+    features_suit_the_sheet,
+    metal_holds_along_rays_and_rings,
     press_is_strong_enough,
     hits_fall_on_whole_metal,
     feet_stand_on_flat_metal,
@@ -92,4 +97,7 @@ def check(disc: Disc, arrangement: Arrangement | None = None, whole: WholeTune |
         of_music += music_fits_the_turn(arrangement, disc, whole)
     if not disc.projection_count:
         return tuple(of_music)
-    return tuple(of_music + [finding for one_check in DISC_CHECKS for finding in one_check(disc)])
+    found = [finding for one_check in DISC_CHECKS for finding in one_check(disc)]
+    if arrangement is not None:
+        found += fast_passages_are_held(arrangement, disc)
+    return tuple(of_music + found)

@@ -1,0 +1,183 @@
+"""Checks of feature sizes against the thickness of the sheet, by the rules of the cutter's shop.
+
+A hole, web or edge that is small for its sheet burns, bulges or breaks; how small is too small differs
+from shop to shop, so the cutter document says, as multiples of the thickness in three levels. The
+cutter's min_web_mm and min_slot_mm stay its own hard limits whatever the sheet.
+"""
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from typing import Literal
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from layout.check.finding import Code, Finding, Level, Place
+from layout.check.margin import GRAIN_MM
+from layout.mechanics.blank import feature_core_mm
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.spacing import core_geometries
+from layout.place.disc import Disc
+
+Kind = Literal["hole", "web", "edge", "slit"]
+
+_LEVELS = (Level.ERROR, Level.WARNING, Level.ADVICE)  # in the order of a rule's three ratios
+_SO = {
+    Level.ERROR: "it does not hold or cannot be cut cleanly",
+    Level.WARNING: "it may burn, bulge or break",
+    Level.ADVICE: "it asks for care",
+}
+_REMEDY = {
+    "hole": "Widen it in the movement document, use thinner sheet, or choose a cutter that cuts finer.",
+    "web": "Leave one of the notes out or put it on another track, use narrower slits, or thinner sheet.",
+    "edge": "Move the track or the hole away from the edge, or use thinner sheet.",
+    "slit": "Widen it in the cutter or movement document, use thinner sheet, or choose a cutter that cuts finer.",
+}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Size:
+    """A feature that was measured: what it is, how wide, where."""
+
+    what: str
+    size_mm: float
+    at: Place = field(default_factory=Place)
+
+
+def features_suit_the_sheet(disc: Disc) -> list[Finding]:
+    """At most one finding for each kind of feature and level: the smallest there, and how many there are.
+
+    A cutter that states no feature_rules is not held to any. Kinds: holes of the blank, webs between
+    openings and to holes, edges (metal up to the rim or the centre hole), slits.
+    """
+    rules = disc.cutter.feature_rules
+    if rules is None:
+        return []
+    thickness_mm = disc.movement.disc.thickness_mm
+    kinds: tuple[tuple[Kind, tuple[float, float, float], Iterator[_Size]], ...] = (
+        ("hole", rules.hole, _holes(disc)),
+        ("web", rules.web, _webs(disc, max(rules.web) * thickness_mm)),
+        ("edge", rules.edge, _edges(disc)),
+        ("slit", rules.slit, _slits(disc)),
+    )
+    return [finding for kind, ratios, sizes in kinds for finding in _judged(disc, kind, ratios, list(sizes))]
+
+
+def _judged(disc: Disc, kind: Kind, ratios: tuple[float, float, float], sizes: list[_Size]) -> list[Finding]:
+    thickness_mm = disc.movement.disc.thickness_mm
+    limits_mm = [ratio * thickness_mm for ratio in ratios]
+    findings = []
+    for place, level in enumerate(_LEVELS):
+        least_mm = limits_mm[place - 1] if place else -math.inf
+        small = [s for s in sizes if least_mm - GRAIN_MM <= s.size_mm < limits_mm[place] - GRAIN_MM]
+        if not small:
+            continue
+        worst = min(small, key=lambda size: size.size_mm)
+        others = f" {len(small) - 1} more are below that." if len(small) > 1 else ""
+        findings.append(
+            Finding(
+                code=Code.SMALL_FOR_SHEET,
+                level=level,
+                message=(
+                    f"{worst.what} is {worst.size_mm:.3f} mm, {worst.size_mm / thickness_mm:.2f} times the sheet's "
+                    f"{thickness_mm:g} mm; {disc.cutter.id} asks for {ratios[place]:g} times, "
+                    f"{limits_mm[place]:.3f} mm: {_SO[level]}.{others}"
+                ),
+                measured=worst.size_mm,
+                limit=limits_mm[place],
+                unit="mm",
+                at=worst.at,
+                remedy=_REMEDY[kind],
+            )
+        )
+    return findings
+
+
+def _holes(disc: Disc) -> Iterator[_Size]:
+    blank = disc.movement.disc
+    yield _Size(what="The centre hole", size_mm=blank.centre_hole_mm)
+    for one in blank.features:
+        at = Place(radius_mm=one.radius_mm, angle_deg=one.first_at_deg % 360)
+        yield _Size(what=f"A {one.purpose} {one.shape}", size_mm=min(one.width_mm, one.length_mm), at=at)
+
+
+def _slits(disc: Disc) -> Iterator[_Size]:
+    """A slit as wide as the kerf is no feature: the beam alone makes it. A press's lance leaves none."""
+    projection, fold = disc.movement.projection, disc.cutter.fold
+    if projection.kind == "slot":
+        yield _Size(what="The slot's width", size_mm=projection.width_mm)
+    elif disc.pattern.making == "fold" and fold is not None and fold.slit_width_mm is not None:
+        yield _Size(what="The slit's width", size_mm=fold.slit_width_mm)
+        if fold.relief_mm > 0 and fold.relief_width_mm is not None:
+            yield _Size(what="The relief's width", size_mm=fold.relief_width_mm)
+
+
+def _edges(disc: Disc) -> Iterator[_Size]:
+    """Metal between the rim or the centre hole and what lies nearest to it, track by track and row by row."""
+    blank = disc.movement.disc
+    rim_mm, hole_mm = blank.outer_diameter_mm / 2, blank.centre_hole_mm / 2
+    for index in disc.used_tracks:
+        core = _cores(disc, disc.turning.radius_mm[[index]], np.zeros(1))[0]
+        nearest_mm, farthest_mm = _reach_mm(core, disc.pattern.core_round_mm)
+        at = Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index]))
+        of = f"from the openings of track {index + 1}"
+        yield _Size(what=f"The metal {of} to the rim", size_mm=rim_mm - farthest_mm, at=at)
+        yield _Size(what=f"The metal {of} to the centre hole", size_mm=nearest_mm - hole_mm, at=at)
+    for one in blank.features:
+        core, round_mm = feature_core_mm(one, math.radians(one.first_at_deg))
+        nearest_mm, farthest_mm = _reach_mm(core, round_mm)
+        at = Place(radius_mm=one.radius_mm, angle_deg=one.first_at_deg % 360)
+        if one.shape != "notch":  # which crosses the rim
+            yield _Size(
+                what=f"The metal from a {one.purpose} {one.shape} to the rim", size_mm=rim_mm - farthest_mm, at=at
+            )
+        what = f"The metal from a {one.purpose} {one.shape} to the centre hole"
+        yield _Size(what=what, size_mm=nearest_mm - hole_mm, at=at)
+
+
+def _webs(disc: Disc, most_mm: float) -> Iterator[_Size]:
+    """Webs below a width, between two openings and between an opening and a hole, slot or notch of the blank."""
+    round_mm = disc.pattern.core_round_mm
+    cores = _cores(disc, disc.radius_mm, disc.edge_angle_rad)
+    tree = shapely.STRtree(cores)
+    one, two = tree.query(cores, predicate="dwithin", distance=most_mm + 2 * round_mm)
+    one, two = one[one < two], two[one < two]
+    webs_mm = shapely.distance(cores[one], cores[two]) - 2 * round_mm
+    for place in np.flatnonzero(webs_mm < most_mm).tolist():
+        pair = (int(one[place]), int(two[place]))
+        tracks = tuple(int(disc.track_index[index]) + 1 for index in pair)
+        what = f"The web between two openings on tracks {tracks[0]} and {tracks[1]}"
+        yield _Size(what=what, size_mm=float(webs_mm[place]), at=_at(disc, pair, tracks))
+    for feature in disc.movement.disc.features:
+        for angle_deg in feature.angles_deg:
+            core, feature_round_mm = feature_core_mm(feature, math.radians(angle_deg))
+            [near] = np.atleast_2d(
+                tree.query(core, predicate="dwithin", distance=most_mm + round_mm + feature_round_mm)
+            )
+            for index in near.tolist():
+                size_mm = float(shapely.distance(cores[index], core)) - round_mm - feature_round_mm
+                track = int(disc.track_index[index]) + 1
+                what = f"The web between an opening on track {track} and a {feature.purpose} {feature.shape}"
+                yield _Size(what=what, size_mm=size_mm, at=_at(disc, (index,), (track,)))
+
+
+def _at(disc: Disc, openings: tuple[int, ...], tracks: tuple[int, ...]) -> Place:
+    return Place(
+        tracks=tracks,
+        projections=openings,
+        radius_mm=float(disc.radius_mm[list(openings)].mean()),
+        angle_deg=math.degrees(disc.edge_angle_rad[openings[0]]),
+    )
+
+
+def _cores(disc: Disc, radius_mm: np.ndarray, angle_rad: np.ndarray) -> NDArray[np.object_]:
+    return core_geometries(on_disc_mm(disc.pattern.core_points_mm, radius_mm, angle_rad, disc.turning.direction))
+
+
+def _reach_mm(core: shapely.Geometry, round_mm: float) -> tuple[float, float]:
+    """Least and greatest distance from the centre of a core grown by a radius."""
+    corners = shapely.get_coordinates(core)
+    nearest_mm = float(shapely.distance(core, shapely.Point(0.0, 0.0)))
+    return nearest_mm - round_mm, float(np.hypot(corners[:, 0], corners[:, 1]).max()) + round_mm
