@@ -1,0 +1,150 @@
+"""/v1/trial-pieces: a movement and a cutter become a trial piece; nothing is kept of it."""
+
+import json
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+
+from flask import Blueprint, Request, Response, request
+
+from layout.documents import Cutter, Movement, shipped_movement_ids
+from layout.trial_walk import trial_files
+from service.api.answers import JSON_MEDIA_TYPE, json_response
+from service.api.archive import ZIP_MEDIA_TYPE, archive_of
+from service.api.failures import too_large
+from service.api.multipart import parts_of
+from service.api.parameters import Query, read_query
+from service.api.problems import ProblemError
+from service.documents import Shipped, Source, Written, cutter_from, default_cutter, movement_from
+from service.limits import Limits
+
+FORM_MEDIA_TYPE = "multipart/form-data"
+DOCUMENT_PARTS = ("movement", "cutter")
+ALL_FILES = "trial-piece.zip"
+# What a POST can answer with, by media type; the first where the client does not mind.
+ANSWERS = {
+    JSON_MEDIA_TYPE: "trial-piece.json",
+    "image/vnd.dxf": "trial-piece.dxf",
+    "application/pdf": "measure.pdf",
+    ZIP_MEDIA_TYPE: ALL_FILES,
+}
+TrialMaker = Callable[[Movement, Cutter], Mapping[str, bytes]]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Asked:
+    """The documents of a trial piece, as they were asked for."""
+
+    movement: Movement
+    cutter: Cutter
+
+
+def trial_piece_routes(limits: Limits, make: TrialMaker = trial_files) -> Blueprint:
+    """The route of trial pieces.
+
+    Args:
+        limits: Read for limits.
+        make: The computation: the files by name.
+    """
+    routes = Blueprint("trial_pieces", __name__, url_prefix="/v1/trial-pieces")
+
+    @routes.post("")
+    def make_trial_piece() -> Response:
+        file_name = _answer_wanted(request)  # what is not acceptable is refused before anything is read
+        query = read_query(request.args, known=DOCUMENT_PARTS, most_reason_characters=limits.reason_characters)
+        asked = _read(request, query, limits)
+        response = _answer(asked, make(asked.movement, asked.cutter), file_name)
+        response.vary.add("Accept")
+        return response
+
+    return routes
+
+
+def _answer(asked: _Asked, files: Mapping[str, bytes], file_name: str) -> Response:
+    if file_name == "trial-piece.json":
+        return json_response(json.loads(files[file_name]))
+    if file_name == ALL_FILES:
+        content = archive_of({_saved_as(asked, name): inside for name, inside in files.items()})
+    else:
+        content = files[file_name]
+    media_type = next(media_type for media_type, name in ANSWERS.items() if name == file_name)
+    response = Response(content, content_type=media_type)
+    response.headers["Content-Disposition"] = f'attachment; filename="{_saved_as(asked, file_name)}"'
+    response.headers["Cache-Control"] = "no-cache"
+    return response
+
+
+def _saved_as(asked: _Asked, file_name: str) -> str:
+    """The name of a file as it is saved: ids are plain letters, digits and hyphens, so it needs no quoting."""
+    stem, _, ending = file_name.rpartition(".")
+    side = asked.cutter.drawn_from
+    return f"{stem}_{asked.movement.id}-r{asked.movement.revision}_{asked.cutter.id}_{side}_mm.{ending}"
+
+
+def _answer_wanted(asked: Request) -> str:
+    if not asked.headers.get("Accept", "").strip():
+        return ANSWERS[JSON_MEDIA_TYPE]
+    best = asked.accept_mimetypes.best_match(ANSWERS)
+    if best is None:
+        raise ProblemError(
+            name="not-acceptable",
+            detail=f"Accept is {asked.headers['Accept'][:200]!r}; the answer can be {', '.join(ANSWERS)}",
+            more={"allowed_types": list(ANSWERS)},
+        )
+    return ANSWERS[best]
+
+
+def _read(asked: Request, query: Query, limits: Limits) -> _Asked:
+    """The documents that a request names or brings.
+
+    Raises:
+        ProblemError: The body is too large, of another media type, or cannot be taken apart; a document is
+            missing or given twice.
+        LayoutError: A document does not ship or is not valid.
+    """
+    parts = _parts(asked, limits)
+    for name, part in parts.items():
+        if len(part) > limits.document_bytes:
+            raise too_large(limits.document_bytes, f"the part {name}")
+    movement = _source("movement", query.movement, parts.get("movement"))
+    if movement is None:
+        raise ProblemError(
+            name="parameter-missing",
+            detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
+            more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
+        )
+    cutter = _source("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    return _Asked(movement=movement_from(movement), cutter=cutter_from(cutter))
+
+
+def _parts(asked: Request, limits: Limits) -> dict[str, bytes]:
+    body = asked.stream.read(limits.upload_bytes + 1)
+    if len(body) > limits.upload_bytes:
+        raise too_large(limits.upload_bytes, "the request body")
+    if asked.mimetype == FORM_MEDIA_TYPE:
+        return parts_of(
+            body,
+            boundary=asked.mimetype_params.get("boundary"),
+            known=DOCUMENT_PARTS,
+            most_parts=limits.form_parts,
+        )
+    if body:
+        raise ProblemError(
+            name="media-type-unsupported",
+            detail=f"{asked.mimetype or 'a body without a media type'!r} is not taken; documents of your own come as "
+            f"parts of {FORM_MEDIA_TYPE}, and a trial piece needs no tune",
+            more={"allowed_types": [FORM_MEDIA_TYPE]},
+            headers={"Accept-Post": FORM_MEDIA_TYPE},
+        )
+    return {}
+
+
+def _source(name: str, named: str | None, written: bytes | None) -> Source | None:
+    if named is not None and written is not None:
+        raise ProblemError(
+            name="parameter-invalid",
+            detail=f"a {name} is given twice: as the parameter {name}={named} and as a part; give one of them",
+            more={"parameter": name},
+        )
+    if written is not None:
+        return Written(text=written)
+    return None if named is None else Shipped(id=named)
