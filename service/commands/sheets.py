@@ -1,0 +1,100 @@
+"""`discwright sheets`: the discs of a sheet job are laid on its stock."""
+
+import argparse
+import json
+import re
+from pathlib import Path
+from typing import Any
+
+from layout.documents.sheets import read_sheet_job
+from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
+from layout.walk import CUTTING_FILES
+from service.commands.arguments import OneLineParser, Tools, add_json, folder
+from service.commands.errors import ERROR_STANDS, GOOD, CommandError
+from service.commands.files_in import read_file
+from service.commands.files_out import write_folders
+from service.commands.findings import finding_lines
+from service.commands.output import aligned, say, say_json
+
+ABOUT = (
+    "Lay many discs on stock: sheets and remnants of any outline, with gaps, margins and clamp zones. The job is a "
+    "JSON document. Writes sheets.json (the plan, for programs), parts.csv (where every disc lies) and one drawing of "
+    "every sheet, sheet-1.dxf and so on, rims on the layer RIM in cutting order; drawings of an earlier run that this "
+    "one does not replace are removed. Ends with 0 where every disc is placed, with 3 where some fit on no sheet (the "
+    "others are written all the same), with 2 where the job cannot be used (nothing is written)."
+)
+EXAMPLE = """example:
+  discwright sheets JOB.json --out cut
+      writes cut/sheet-1.dxf and the others, and says how well each sheet is used"""
+DRAWING = re.compile(r"sheet-[1-9][0-9]*\.dxf")
+
+
+def add_arguments(parser: OneLineParser) -> None:
+    """Add the arguments of this subcommand."""
+    parser.add_argument("job", type=Path, metavar="JOB.json", help="the sheet job: stock and discs")
+    parser.add_argument("--out", type=folder, required=True, metavar="DIR", help="the folder for the files")
+    add_json(parser)
+
+
+def run(asked: argparse.Namespace, tools: Tools) -> int:
+    """Lay the discs on their sheets; gives the exit code.
+
+    Raises:
+        CommandError: A file cannot be read or written.
+        LayoutError: The job cannot be used.
+    """
+    job = read_sheet_job(read_file(asked.job, what="the sheet job", most_bytes=tools.limits.document_bytes))
+    _check_own(asked.out)
+    plan = plan_sheets(job)
+    files = sheet_files_of(plan)
+    removed = _without_stale(asked.out, files)
+    write_folders({asked.out: files})
+    told = json.loads(files[PLAN_FILE])
+    if asked.json:
+        paths = {name: str(asked.out / name) for name in files}
+        say_json({"complete": plan.complete, "files": paths, "removed": removed, "plan": told})
+    else:
+        say([*_lines(told), *finding_lines(told["findings"])])
+        say([f"written to {asked.out}: {', '.join(files)}"])
+        say([f"removed from {asked.out}, as they were of an earlier job: {', '.join(removed)}"] if removed else [])
+    return GOOD if plan.complete else ERROR_STANDS
+
+
+def _check_own(out: Path) -> None:
+    """Raise where a folder holds the cutting files of a disc: writing files of another kind would remove them."""
+    for name in CUTTING_FILES:
+        if (out / name).exists():
+            raise CommandError(f"{str(out)!r} holds {name} of a disc; choose another --out for the sheets")
+
+
+def _without_stale(out: Path, files: dict[str, bytes]) -> list[str]:
+    """Drawings of an earlier job are removed before this one's are written: they would be cut as part of it."""
+    try:
+        found = sorted(path for path in out.iterdir() if DRAWING.fullmatch(path.name)) if out.is_dir() else []
+        stale = [path for path in found if path.name not in files and path.is_file()]
+        for path in stale:
+            path.unlink()
+    except OSError as refusal:
+        raise CommandError(f"cannot write to {str(out)!r}: {refusal.strerror or refusal}") from refusal
+    return [path.name for path in stale]
+
+
+def _lines(told: dict[str, Any]) -> list[str]:
+    placed, wanted = (sum(disc[count] for disc in told["discs"]) for count in ("placed", "wanted"))
+    lines = [told["title"], f"  placed      {placed} of {wanted} discs on {_counted(len(told['sheets']), 'sheet')}"]
+    rows = [
+        (
+            f"  sheet {sheet['sheet']}",
+            sheet["stock"] + (f", lot {sheet['lot']}" if sheet["lot"] else ""),
+            _counted(len(sheet["discs"]), "disc"),
+            f"{sheet['used_percent']:.1f} % used",
+            f"cut from the {sheet['cut_from']}",
+            _counted(len(sheet["remnants"]), "remnant"),
+        )
+        for sheet in told["sheets"]
+    ]
+    return lines + (aligned(rows) if rows else [])
+
+
+def _counted(count: int, what: str) -> str:
+    return f"{count} {what}" if count == 1 else f"{count} {what}s"
