@@ -4,8 +4,8 @@ A flat spiral spring gives M = E·b·h³·φ/(12·L), φ being how far it is wou
 of a clamped strip of the section's inertia b·h³/12 (handbooks of spring design). A train whose disc
 turns `ratio` times in a turn of the barrel brings M·efficiency/ratio to the disc.
 
-What the disc needs is friction and its peak load. Not the mean: what turns slowly stores little, on a disc of half
-a metre less than one full chord takes, and a disc that stops on a chord stays stopped. The rest goes
+What the disc needs is friction and its peak load. Not the mean: what turns so slowly stores little more than one
+full chord takes, so it would be carried over a chord only at a loss of speed, and stops on the next. The rest goes
 into the air brake, whose drag grows with the square of the speed: there the mean load counts, and the
 speed follows the root of the surplus torque. Where friction, load or efficiency is not stated it is
 left aside, and turns and torques are then upper bounds, the loss of speed a lower one.

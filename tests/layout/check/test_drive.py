@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+from layout import walk
 from layout.check import Code, Finding, Level, check
 from layout.check.drive import (
     drive_carries_the_teeth,
@@ -15,9 +16,10 @@ from layout.check.drive import (
     train_gives_the_turn,
     winding_lasts,
 )
-from layout.documents import Movement, shipped_movement
+from layout.documents import Cutter, Movement, Settings, shipped_movement
 from layout.mechanics.arrays import frozen_floats
-from tests.layout.examples import PLAIN, PRESS, disc_of, movement_with
+from service.demo.compose import demo_tune
+from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, disc_of, movement_with
 
 CHECKS = [
     music_waits_for_the_speed,
@@ -370,3 +372,40 @@ def test_a_shipped_drive_carries_five_notes_on_every_release() -> None:
     disc = disc_of(movement, plucks, PRESS)
 
     assert [finding for one_check in CHECKS for finding in one_check(disc)] == []
+
+
+DRIVE_CODES = {
+    Code.START_TOO_SHORT,
+    Code.DRIVE_OVERLOADED,
+    Code.WINDING_TOO_SHORT,
+    Code.TEMPO_SAGS,
+    Code.TURN_DIFFERS,
+    Code.MARGIN_UNSURE,
+}
+
+
+@pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_demo_on_a_shipped_movement_has_no_finding_of_the_drive(movement: Movement, cutter: Cutter) -> None:
+    laid_out = walk.lay_out(demo_tune(), movement, cutter, Settings())
+
+    assert [finding for finding in laid_out.findings if finding.code in DRIVE_CODES] == []
+
+
+def test_a_load_kept_while_arranging_is_kept_on_the_disc_and_one_ignored_is_found_on_its_drawing_too() -> None:
+    movement = shipped_movement("mossbrook-67")
+    assert movement.drive is not None
+    # The demo's heaviest chord would load this disc with 206.8 N mm.
+    weak = movement.model_copy(update={"drive": movement.drive.model_copy(update={"torque_limit_nmm": 195.0})})
+
+    kept = walk.lay_out(demo_tune(), weak, LASER, Settings())
+    ignored = walk.lay_out(demo_tune(), weak, LASER, Settings(load_limit="ignore"))
+    drawn = walk.check_drawing(walk.files_of(ignored, not_good="a test")["disc.dxf"], weak, LASER)
+
+    assert kept.good_to_cut
+    [finding] = [finding for finding in ignored.findings if finding.code in DRIVE_CODES]
+    assert (finding.code, finding.level) == (Code.DRIVE_OVERLOADED, Level.ERROR)
+    assert finding.measured == pytest.approx(206.803, abs=1e-3)
+    [again] = [finding for finding in drawn.findings if finding.code in DRIVE_CODES]
+    assert (again.code, again.level, again.at.tracks) == (finding.code, finding.level, finding.at.tracks)
+    assert again.measured == pytest.approx(finding.measured, abs=1e-3)
