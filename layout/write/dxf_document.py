@@ -8,9 +8,10 @@ steps are taken one by one, and between them the stamps are put right on this on
 import io
 import textwrap
 from datetime import datetime
+from typing import Literal
 
 from ezdxf.document import CONST_GUID, EZDXF_META, Drawing
-from ezdxf.filemanagement import new
+from ezdxf.lldxf.const import DXF12
 from ezdxf.lldxf.tagwriter import TagWriter
 from ezdxf.tools.juliandate import juliandate
 from ezdxf.units import MM
@@ -20,6 +21,7 @@ from layout.write.plain_text import dxf_text
 
 _COMMENT = "999\n{}\n"  # DXF reference: group code 999 is a comment, may stand before the sections
 _COMMENT_WIDTH = 200  # characters; a DXF line of R2010 holds 2049 bytes, seven for one character at most
+EZDXF_APP = "EZDXF"  # under which the library marks a document as its own
 _NO_MOMENT = juliandate(datetime(2000, 1, 1))  # any fixed day would do
 _MOMENTS = ("$TDCREATE", "$TDUCREATE", "$TDUPDATE", "$TDUUPDATE")
 _IDENTIFIERS = ("$FINGERPRINTGUID", "$VERSIONGUID")
@@ -27,14 +29,18 @@ _DECIMAL_LENGTHS, _DECIMAL_DEGREES = 2, 0  # $LUNITS, $AUNITS
 _DECIMALS_SHOWN = 3  # $LUPREC, $AUPREC: what a drawing program shows, not what the file holds
 
 
-def new_document(extents_mm: FloatArray) -> Drawing:
-    """An empty R2010 document in millimetres, with nothing but the layer 0.
+def new_document(extents_mm: FloatArray, release: Literal["R2010", "R12"] = "R2010") -> Drawing:
+    """An empty document in millimetres, with nothing but the layer 0.
 
     Args:
         extents_mm: Shape (2, 2). Corners of what will be drawn; the view opens on them.
+        release: Of the DXF format. R12 has no place for the unit of length; a comment has to say it.
     """
-    document = new("R2010", units=MM)
-    document.layers.remove("Defpoints")  # made by ezdxf for dimensions, of which we draw none
+    document = Drawing.new(release)  # not its `new`, which warns on standard error that R12 has no units
+    if release != "R12":
+        document.units = MM
+    if document.layers.has_entry("Defpoints"):  # made by ezdxf for dimensions, of which we draw none
+        document.layers.remove("Defpoints")
     header = document.header
     header["$MEASUREMENT"] = 1
     header["$LUNITS"], header["$AUNITS"] = _DECIMAL_LENGTHS, _DECIMAL_DEGREES
@@ -75,7 +81,12 @@ def _unstamp(document: Drawing) -> None:
     for name in _IDENTIFIERS:
         header[name] = CONST_GUID
     header["$LASTSAVEDBY"] = "discwright"
-    meta = document.rootdict.get_required_dict(EZDXF_META)
-    document.rootdict.discard(EZDXF_META)
-    document.objects.delete_entity(meta)  # and with it the entries it owns
-    document.appids.remove("EZDXF")
+    if document.dxfversion == DXF12:
+        marked = document.modelspace().block_record.block
+        if marked is not None:
+            marked.discard_xdata(EZDXF_APP)
+    else:
+        meta = document.rootdict.get_required_dict(EZDXF_META)
+        document.rootdict.discard(EZDXF_META)
+        document.objects.delete_entity(meta)  # and with it the entries it owns
+    document.appids.remove(EZDXF_APP)
