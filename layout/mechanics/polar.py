@@ -121,16 +121,20 @@ _Ends = tuple[float, float, float, float]  # radius and angle where a piece begi
 
 
 def outline_of(points_mm: FloatArray, bulges: FloatArray) -> Outline | None:
-    """The outline of a shape that lies near the +X axis, or None where it goes round the centre or behind it.
+    """The outline of a shape that lies near the +X axis; None where it goes round the centre or behind it.
 
     Args:
         points_mm: Shape (n, 2). Vertices of a simple closed outline on the disc.
         bulges: Shape (n,). DXF bulge of the piece that starts at each vertex.
+
+    Corners in one place count as one; a shape of no size has no outline.
     """
     pieces: list[_Piece] = []
     ends: list[_Ends] = []
     corners = [complex(x_mm, y_mm) for x_mm, y_mm in points_mm.tolist()]
     for start, end, bulge in zip(corners, corners[1:] + corners[:1], bulges.tolist(), strict=True):
+        if abs(end - start) <= _SHORT:  # two corners in one place, as where a relief has no length
+            continue
         stops = _round_stops(start, end, bulge) if bulge else _straight_stops(start, end)
         if min(stop.real for stop in stops) <= _SHORT:
             return None
@@ -138,6 +142,8 @@ def outline_of(points_mm: FloatArray, bulges: FloatArray) -> Outline | None:
         for first, last in pairwise(stops):
             pieces.append(piece_of(first, last))
             ends.append((abs(first), cmath.phase(first), abs(last), cmath.phase(last)))
+    if not pieces:
+        return None
     curves = _curves(pieces)
     spans = np.array(ends)
     return Outline(

@@ -109,6 +109,16 @@ def test_an_opening_over_the_centre_has_no_net_section() -> None:
     assert metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad) is None
 
 
+def test_corners_in_one_place_count_as_one() -> None:
+    # a relief of a billionth of a millimetre has its corners where the channel ends
+    fold = {"fold/relief_mm": 0.0, "fold/slit_width_mm": 0.42}
+    none = left_on(disc_of(PLAIN, [(1, 10.0)], cutter_with(fold)))
+    tiny = left_on(disc_of(PLAIN, [(1, 10.0)], cutter_with(fold | {"fold/relief_mm": 1e-12})))
+
+    assert tiny.line_mm == pytest.approx(none.line_mm, abs=LINE_GRAIN_MM)
+    assert tiny.ring_share == pytest.approx(none.ring_share, abs=RING_GRAIN_RAD)
+
+
 def outline(disc: Disc, place: int) -> shapely.Polygon:
     """One opening as shapely draws it; round ends in 64 steps a quarter, wrong by 0.65 · (1 − cos 0.7°) = 0.05 µm."""
     radius_mm, angle_rad = disc.radius_mm[[place]], disc.edge_angle_rad[[place]]
