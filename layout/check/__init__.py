@@ -21,6 +21,7 @@ from layout.check.drive import (
 from layout.check.feature_sizes import features_suit_the_sheet
 from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.forming import bends_are_wide_enough, bends_lie_across_the_rolling
+from layout.check.kerf import nothing_closes_under_the_kerf
 from layout.check.labels import labels_are_seen
 from layout.check.music import WholeTune, music_fits_the_turn, something_plays
 from layout.check.net_section import metal_holds_along_rays_and_rings
@@ -47,6 +48,7 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     press_has_the_tool,
     slits_are_wide_enough,
     holes_are_large_enough,
+    nothing_closes_under_the_kerf,
     bends_are_wide_enough,
     bends_lie_across_the_rolling,
     labels_are_seen,

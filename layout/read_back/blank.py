@@ -1,7 +1,7 @@
 """Holes and rim of a drawing against those of the movement."""
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import shapely
@@ -27,9 +27,25 @@ class _Edge:
     at: Place
 
 
-def compare_blank(drawing: CutDrawing, movement: Movement) -> list[Finding]:
-    """What of the centre hole, the features and the rim is missing, different, extra or drawn twice."""
-    return _compare(drawing, "HOLES", _holes(movement)) + _compare(drawing, "RIM", [_rim(movement)])
+def compare_blank(drawing: CutDrawing, movement: Movement, *, half_kerf_mm: float = 0.0) -> list[Finding]:
+    """What of the centre hole, the features and the rim is missing, different, extra or drawn twice.
+
+    Args:
+        drawing: Seen from the label side.
+        movement: For its blank.
+        half_kerf_mm: By how much holes are drawn smaller and the rim larger than they are to be; 0 in a
+            drawing of finished edges.
+    """
+    holes = [_as_drawn(edge, -half_kerf_mm) for edge in _holes(movement)]
+    return _compare(drawing, "HOLES", holes) + _compare(drawing, "RIM", [_as_drawn(_rim(movement), half_kerf_mm)])
+
+
+def _as_drawn(edge: _Edge, outwards_mm: float) -> _Edge:
+    """The edge as a compensated drawing has it, corners sharp; as it is where it would vanish."""
+    if outwards_mm == 0:
+        return edge
+    moved = shapely.Polygon(shapely.get_coordinates(edge.line)).buffer(outwards_mm, join_style="mitre")
+    return edge if moved.is_empty else replace(edge, line=moved.exterior)
 
 
 def _circle(radius_mm: float) -> BaseGeometry:

@@ -9,6 +9,7 @@ import numpy as np
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.cutter import Cutter
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
+from layout.mechanics.offset import moved_outlines
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 from layout.read_back.contour import Contour
@@ -66,13 +67,21 @@ class Wanted:
         return "SLITS" if self.pattern.making == "fold" else "SLOTS"
 
     @property
+    def half_kerf_mm(self) -> float:
+        """By how much outlines are drawn smaller than finished edges; 0 where the shop compensates."""
+        return self.cutter.kerf_mm / 2 if self.cutter.kerf_compensated else 0.0
+
+    @property
     def contour(self) -> Contour | None:
-        """The cut of one projection in its flat frame; None where nothing but hits is drawn."""
+        """The cut of one projection in its flat frame, as it is drawn; None where nothing but hits is drawn."""
         cut = self.pattern.cut
         if cut is None:
             return None
-        contour = Contour(layer="", points_mm=cut.points_mm, bulge_ratio=cut.bulges, closed=cut.closed)
-        return contour.tidied()
+        points_mm, bulges = cut.points_mm, cut.bulges
+        if self.half_kerf_mm and cut.closed:
+            moved = moved_outlines(points_mm[None], bulges, -self.half_kerf_mm)
+            points_mm, bulges = (points_mm, bulges) if moved is None else (moved[0][0], moved[1])
+        return Contour(layer="", points_mm=points_mm, bulge_ratio=bulges, closed=cut.closed).tidied()
 
 
 def projections_of(drawing: CutDrawing, wanted: Wanted) -> Found:

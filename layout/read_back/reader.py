@@ -24,8 +24,10 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     at. Tracks, fold lines and openings after forming make the drawing a record, which is never cut,
     and a head that says NOT GOOD TO CUT is believed; both are errors. Accepted on them are polylines, circles, points
     (hits), and lines and arcs that follow one another; vertices may start anywhere and run either
-    way. The absolute place of every working edge is recovered from the shape of its cut. A drawing
-    that fits only when mirrored is told once, by its outlines, its blank or its music.
+    way. Where the cutter's drawings are compensated for the kerf, outlines are taken for the beam's
+    middle, half a kerf off the finished edges. The absolute place of every working edge is recovered
+    from the shape of its cut. A drawing that fits only when mirrored is told once, by its outlines, its
+    blank or its music.
 
     Args:
         dxf: An ASCII DXF file in millimetres, its origin at the disc's centre.
@@ -53,7 +55,7 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
         edge_angle_rad=frozen_floats(found.edges.edge_angle_rad),
     )
     of_the_file = findings_on_the_file(dxf, drawing, cutter)
-    differs = compare_blank(drawing, movement)
+    differs = compare_blank(drawing, movement, half_kerf_mm=wanted.half_kerf_mm)
     of_the_side = [] if found.shows_side else findings_on_the_side(drawing, found.edges, differs, wanted, movement)
     return Reading(disc=disc, findings=(*of_the_file, *of_the_side, *found.findings, *differs))
 

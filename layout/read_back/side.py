@@ -31,7 +31,7 @@ def findings_on_the_side(
         At most one finding; none for a drawing without projections whose blank agrees.
     """
     mirrored = drawing.mirrored()
-    differs_mirrored = compare_blank(mirrored, movement)
+    differs_mirrored = compare_blank(mirrored, movement, half_kerf_mm=wanted.half_kerf_mm)
     if differs and not differs_mirrored:
         evidence = "holes and rim agree with the movement only when mirrored; the drawing seems to show"
         return [other_side(evidence, wanted.cutter, differs[0].at)]
