@@ -8,7 +8,9 @@ at its onset), the *bass* (lowest, and not highest) or *inner* (neither).
 from dataclasses import dataclass
 
 from layout.arrange.arrangement import LeftOutReason, Tried, Worth
+from layout.mechanics.net_section import MetalLeft
 from layout.mechanics.starting import Starting
+from layout.mechanics.tolerances import PlaceError
 from layout.mechanics.torque import TurnTorque
 from layout.mechanics.winding import WindingRun
 
@@ -76,24 +78,20 @@ class BarLoss:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class TrackTiming:
-    """How far off its moment a track may sound, by the cutter's stated tolerances, and by nudges.
+    """How far off its moment a track may sound, by what cutter and movement state, and by nudges.
 
     Attributes:
         track: Number, from 1.
         radius_mm: Of the track.
         pluck_count: Its plucks, extra ones included.
-        position_ms: e·T/(2πr) of the position tolerance e, either way.
-        angle_ms: T/360 of every degree of the angle tolerance, either way; the same on every track.
-        together_ms: Their sum: the worst case.
+        error: Each part of the error, and what states it.
         largest_nudge_ms: Greatest size of a nudge on the track; 0.0 where there is none.
     """
 
     track: int
     radius_mm: float
     pluck_count: int
-    position_ms: float
-    angle_ms: float
-    together_ms: float
+    error: PlaceError
     largest_nudge_ms: float
 
 
@@ -178,6 +176,7 @@ class Report:
         tried: The best transpositions and speeds, best first, at most five.
         worst_bars: At most five bars that lose the most weight, the greatest loss first, then by bar.
         tracks: The timing of every track used, the innermost first.
+        metal_left: The least metal the openings leave; None where there are none.
         load: The greatest load; None where there is none to tell.
         no_load_because: Why there is none; None where there is one.
         drive: What drives the disc, and how it turns.
@@ -195,6 +194,7 @@ class Report:
     tried: tuple[Tried, ...]
     worst_bars: tuple[BarLoss, ...]
     tracks: tuple[TrackTiming, ...]
+    metal_left: MetalLeft | None
     load: PeakLoad | None
     no_load_because: str | None
     drive: Driving

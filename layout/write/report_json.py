@@ -4,7 +4,9 @@ import math
 from typing import Any
 
 from layout.arrange.arrangement import Tried, Worth
+from layout.documents.making import NetSection
 from layout.documents.movement import Movement
+from layout.mechanics.net_section import MetalLeft
 from layout.mechanics.starting import Starting
 from layout.mechanics.torque import TurnTorque
 from layout.mechanics.winding import WindingRun
@@ -38,12 +40,14 @@ def report_record(laid_out: LaidOut) -> Record:
     share, `melody` where no lead channel sets it apart from the top line, `load` where there is
     none, and `no_load_because` then says why. Nudges are told to a nanosecond, the torque over the turn to
     a microsecond and as finely, all else unrounded. In `drive` what is not known is null, and `not_stated`
-    names the fields of the movement it would need.
+    names the fields of the movement it would need. `net_section` is null where there are no openings; a least
+    share is null where the cutter states none. Parts of a track's timing are null where they are not stated.
 
     Args:
         laid_out: The layout.
     """
     report, arrangement, movement = laid_out.report, laid_out.arrangement, laid_out.disc.movement
+    left = report.metal_left
     return {
         "format": FORMAT,
         "title": laid_out.title,
@@ -70,6 +74,7 @@ def report_record(laid_out: LaidOut) -> Record:
         "load": None if report.load is None else _load(report.load),
         "no_load_because": report.no_load_because,
         "drive": _drive(report.drive, movement),
+        "net_section": None if left is None else _net_section(left, laid_out.disc.cutter.net_section),
         "tracks": [_track(track) for track in report.tracks],
     }
 
@@ -184,12 +189,39 @@ def _winding(run: WindingRun, *, upper_bound: bool) -> Record:
 
 
 def _track(track: TrackTiming) -> Record:
+    error = track.error
     return {
         "track": track.track,
         "radius_mm": track.radius_mm,
         "pluck_count": track.pluck_count,
-        "position_ms": track.position_ms,
-        "angle_ms": track.angle_ms,
-        "together_ms": track.together_ms,
+        "position_mm": error.position_mm,
+        "placed_by": error.placed_by,
+        "no_class_because": error.class_outside,
+        "position_ms": error.position_ms,
+        "angle_ms": error.angle_ms,
+        "play_ms": error.play_ms,
+        "depth_ms": error.depth_ms,
+        "together_ms": error.together_ms,
+        "root_square_ms": error.root_square_ms,
+        "engagement_mm": error.engagement_mm,
         "largest_nudge_ms": track.largest_nudge_ms,
+    }
+
+
+def _net_section(left: MetalLeft, least: NetSection | None) -> Record:
+    return {
+        "from_mm": left.from_mm,
+        "to_mm": left.to_mm,
+        "line": {
+            "left_mm": left.line_mm,
+            "share": left.line_share,
+            "angle_deg": math.degrees(left.line_angle_rad),
+            "least_share": None if least is None else least.least_line_share,
+        },
+        "ring": {
+            "left_mm": left.ring_mm,
+            "share": left.ring_share,
+            "radius_mm": left.ring_radius_mm,
+            "least_share": None if least is None else least.least_ring_share,
+        },
     }

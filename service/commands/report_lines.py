@@ -25,22 +25,23 @@ def kept_lines(report: Report) -> list[str]:
     kept += f", as {report['projection_count']} projections"
     if extra := report["extra_pluck_count"]:
         kept += f", {extra} of them extra plucks"
-    lines = [_labelled("kept", kept), *_wrapped("worth", worth_told(report["worth"]))]
+    lines = [_labelled("kept", kept), *wrapped("worth", worth_told(report["worth"]))]
     for label, reasons in (("left out", total["left_out"]), ("not asked", report["not_asked"])):
         if reasons:
             tally = ", ".join(f"{count} {reason}" for reason, count in sorted(reasons.items()))
-            lines += _wrapped(label, f"{sum(reasons.values())}: {tally}")
+            lines += wrapped(label, f"{sum(reasons.values())}: {tally}")
     return lines
 
 
 def report_lines(report: Report) -> list[str]:
-    """Lines that tell the rest: voices, the worst bars, transpositions, the load, the drive and the timing."""
+    """Lines that tell the rest: voices, the worst bars, transpositions, load, drive, metal left and timing."""
     return [
         *_voice_lines(report),
         *_bar_lines(report["worst_bars"]),
         *_tried_lines(report["tried"]),
         *_load_lines(report),
         *_drive_lines(report["drive"]),
+        *_metal_lines(report["net_section"]),
         *_timing_lines(report["tracks"]),
     ]
 
@@ -122,12 +123,12 @@ def _tried_lines(tried: list[Mapping[str, Any]]) -> list[str]:
 def _load_lines(report: Report) -> list[str]:
     load = report["load"]
     if load is None:
-        return _wrapped("load", f"not known: {report['no_load_because']}")
+        return wrapped("load", f"not known: {report['no_load_because']}")
     chord = ", ".join(f"{loaded['pitch']} (track {loaded['track']})" for loaded in load["chord"])
     limit = "the movement states no limit"
     if load["limit_nmm"] is not None:
         limit = f"{100 * load['share_of_limit']:.1f} % of the {load['limit_nmm']:.4g} N mm the drive has"
-    return _wrapped("load", f"at most {load['peak_nmm']:.4g} N mm, {limit}, at {load['at_s']:.3f} s: {chord}")
+    return wrapped("load", f"at most {load['peak_nmm']:.4g} N mm, {limit}, at {load['at_s']:.3f} s: {chord}")
 
 
 def _drive_lines(drive: Mapping[str, Any]) -> list[str]:
@@ -151,7 +152,23 @@ def _drive_lines(drive: Mapping[str, Any]) -> list[str]:
         )
     if drive["not_stated"]:
         told.append(f"not stated: {', '.join(drive['not_stated'])}")
-    return _wrapped("drive", "; ".join(told)) if told else []
+    return wrapped("drive", "; ".join(told)) if told else []
+
+
+def _metal_lines(left: Mapping[str, Any] | None) -> list[str]:
+    if left is None:
+        return []
+    line, ring = left["line"], left["ring"]
+    told = (
+        f"least left on a line {_share_told(line)} ({line['left_mm']:.1f} mm, at {line['angle_deg']:.1f}°), "
+        f"on a ring {_share_told(ring)} (at {ring['radius_mm']:.1f} mm)"
+    )
+    return wrapped("metal", told if line["least_share"] is not None else f"{told}; the cutter states no least")
+
+
+def _share_told(part: Mapping[str, Any]) -> str:
+    least = "" if part["least_share"] is None else f" of at least {100 * part['least_share']:.4g} %"
+    return f"{100 * part['share']:.1f} %{least}"
 
 
 def _timing_lines(tracks: list[Mapping[str, Any]]) -> list[str]:
@@ -159,18 +176,26 @@ def _timing_lines(tracks: list[Mapping[str, Any]]) -> list[str]:
         return []
     inner, outer = tracks[0], tracks[-1]
     told = (
-        f"cut within {inner['together_ms']:.1f} ms either way on track {inner['track']} ({inner['radius_mm']:.4g} mm)"
+        f"at worst cut within {inner['together_ms']:.1f} ms either way ({inner['root_square_ms']:.1f} ms by root of "
+        f"squares) on track {inner['track']} ({inner['radius_mm']:.4g} mm)"
     )
     if outer is not inner:
-        told += f", {outer['together_ms']:.1f} ms on track {outer['track']} ({outer['radius_mm']:.4g} mm)"
-    return _wrapped("timing", f"{told}; report.json lists every track")
+        told += (
+            f", {outer['together_ms']:.1f} ms ({outer['root_square_ms']:.1f} ms) on track {outer['track']} "
+            f"({outer['radius_mm']:.4g} mm)"
+        )
+    told += f"; placed by {' and '.join(sorted({track['placed_by'] for track in tracks}))}"
+    if inner["play_ms"] is None:
+        told += "; the centre hole's play is not stated"
+    return wrapped("timing", f"{told}; report.json lists every track")
 
 
 def _labelled(label: str, text: str) -> str:
     return f"  {label:<12}{text}"
 
 
-def _wrapped(label: str, text: str) -> list[str]:
+def wrapped(label: str, text: str) -> list[str]:
+    """Lines of a text under its label, none wider than a terminal shows."""
     return textwrap.wrap(
         text, WIDTH, initial_indent=_labelled(label, ""), subsequent_indent=INDENT, break_on_hyphens=False
     )

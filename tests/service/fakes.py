@@ -94,6 +94,7 @@ REPORT: dict[str, Any] = {
         "clearing_turn": {"track_count": 0},
         "not_stated": [],
     },
+    "net_section": None,
     "tracks": [],
 }
 

@@ -232,10 +232,10 @@ def test_the_timing_error_of_a_track_follows_from_the_tolerances_of_the_cutter()
     assert (inner.track, inner.radius_mm, inner.pluck_count) == (1, 40.0, 2)
     assert (outer.track, outer.radius_mm, outer.pluck_count) == (3, 190.0, 1)
     # 0.1 mm at a turn of 60 s: 100 · 60 / (2π · 40) = 23.873 ms, and at 190 mm 5.026 ms
-    assert (inner.position_ms, outer.position_ms) == pytest.approx((23.873, 5.026), abs=0.001)
+    assert (inner.error.position_ms, outer.error.position_ms) == pytest.approx((23.873, 5.026), abs=0.001)
     # 0.05° of 360° is 60 000 ms / 7200, on every track
-    assert inner.angle_ms == outer.angle_ms == pytest.approx(8.333, abs=0.001)
-    assert outer.together_ms == pytest.approx(5.026 + 8.333, abs=0.001)
+    assert inner.error.angle_ms == outer.error.angle_ms == pytest.approx(8.333, abs=0.001)
+    assert outer.error.together_ms == pytest.approx(5.026 + 8.333, abs=0.001)
 
 
 def test_the_greatest_load_is_told_with_its_chord() -> None:

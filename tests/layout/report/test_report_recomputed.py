@@ -14,19 +14,22 @@ from typing import Any
 
 import numpy as np
 import pytest
+import shapely
+from shapely import affinity
 
 from layout import walk
 from layout.arrange.arrangement import NO_NOTE
 from layout.arrange.loading import greatest_load
-from layout.documents import Cutter, Movement, read_settings
+from layout.documents import Cutter, Movement, read_settings, shipped_movement
 from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.mechanics.projection import Pattern
 from layout.place import place
 from layout.play import play
 from layout.report import report_on
 from layout.write import layout_record, report_record
 from layout.write.laid_out import LaidOut
 from service.demo.compose import demo_tune
-from tests.layout.examples import LASER, PRESS, SHIPPED, movement_with
+from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, movement_with
 from tests.outside.pieces import public_domain_piece
 
 Json = dict[str, Any]
@@ -45,6 +48,7 @@ WANTED = {
     },
 }
 MICROSECOND_MS = 1e-3
+CLASS_1_MM = 0.2  # ISO 9013 class 1, sheet up to 1 mm, sizes from 35 to 125 mm (modulusmetal.com): fernhollow's tracks
 LIFTED = {"stiffness_n_per_mm": 2.0, "lift_mm": 0.5}
 
 
@@ -133,6 +137,58 @@ def worst_bars_of(layout: Json) -> list[Json]:
     ]
 
 
+def engagement_of(movement: Movement) -> float | None:
+    """How far a release stays from the let-go at the least depth, and the meeting at the greatest; None for slots."""
+    wheel, projection = movement.star_wheel, movement.projection
+    if projection.kind == "slot":
+        return None
+    spread_mm = projection.depth_plus_minus_mm + movement.disc.flatness_mm
+    least_rad, most_rad = (
+        math.acos((wheel.axis_depth_mm - projection.depth_mm + off_mm) / wheel.tip_radius_mm)
+        for off_mm in (spread_mm, -spread_mm)
+    )
+    release, met = math.sin(math.radians(wheel.release_angle_deg)), math.sin(most_rad - 2 * math.pi / wheel.points)
+    return wheel.tip_radius_mm * min(math.sin(least_rad) - release, release - met)
+
+
+def assert_metal_right(net: Json, layout: Json, movement: Movement, pattern: Pattern) -> None:
+    """Openings drawn with shapely where layout.json has them: no ray or ring tried leaves less than is told."""
+    direction = 1 if movement.turns == "clockwise" else -1
+    core = pattern.core_points_mm * [1, -direction]  # u is the travel, against the angle for a clockwise disc
+    flat = shapely.Polygon(core) if len(core) > 2 else shapely.LineString(core).buffer(pattern.core_round_mm, 64)
+    upright = affinity.rotate(flat, -90 * direction, origin=(0, 0))
+    whole = shapely.union_all(
+        [
+            affinity.rotate(affinity.translate(upright, place["radius_mm"], 0), place["angle_deg"], origin=(0, 0))
+            for place in layout["projections"]
+        ]
+    )
+    band_mm = np.array([net["from_mm"], net["to_mm"]])
+    assert np.hypot(*shapely.get_coordinates(whole).T).max() == pytest.approx(band_mm[1], abs=1e-3)
+
+    def left_mm(angle_deg: float) -> float:
+        at = math.radians(angle_deg)
+        ray = shapely.LineString(band_mm[:, None] * [math.cos(at), math.sin(at)])
+        return float(ray.length - ray.intersection(whole).length)
+
+    told_mm = net["line"]["left_mm"]
+    assert min(left_mm(net["line"]["angle_deg"] + step) for step in (-1e-6, 0, 1e-6)) == pytest.approx(
+        told_mm, abs=3e-3
+    )
+    assert min(left_mm(0.73 * step) for step in range(494)) >= told_mm - 2e-3
+    assert net["line"]["share"] == pytest.approx(told_mm / (band_mm[1] - band_mm[0]))
+
+    def share(radius_mm: float) -> float:
+        at = np.arange(0, 2 * math.pi, 1e-4)
+        return 1 - float(np.mean(shapely.contains_xy(whole, radius_mm * np.cos(at), radius_mm * np.sin(at))))
+
+    shapely.prepare(whole)
+    ring = net["ring"]
+    assert min(share(ring["radius_mm"] + step) for step in (-1e-6, 1e-6)) == pytest.approx(ring["share"], abs=2e-3)
+    assert min(map(share, np.linspace(*band_mm, 25))) >= ring["share"] - 2e-3
+    assert ring["left_mm"] == pytest.approx(ring["share"] * 2 * math.pi * ring["radius_mm"])
+
+
 def tracks_of(layout: Json, movement: Movement, cutter: Cutter) -> list[Json]:
     """Timing: a point at radius r passes 2πr mm in a turn, and 360 degrees."""
     rows = []
@@ -142,17 +198,28 @@ def tracks_of(layout: Json, movement: Movement, cutter: Cutter) -> list[Json]:
             continue
         mm_per_ms = 2 * math.pi * track.radius_mm / (1000 * movement.revolution_s)
         deg_per_ms = 360 / (1000 * movement.revolution_s)
-        position_ms = cutter.position_tolerance_mm / mm_per_ms
+        by_class_mm = CLASS_1_MM if cutter.tolerance_class == "iso-9013-1" else cutter.position_tolerance_mm
+        position_ms = by_class_mm / mm_per_ms
         angle_ms = cutter.angle_tolerance_deg / deg_per_ms
+        play_mm = movement.disc.centre_hole_play_mm
+        play_ms = 0.0 if play_mm is None else play_mm / 2 / mm_per_ms
         largest_ms = max(abs(place["sounds_s"] - place["asked_s"]) * 1000 for place in placed)
+        engagement_mm = engagement_of(movement)
         rows.append(
             {
                 "track": track.track,
                 "radius_mm": track.radius_mm,
                 "pluck_count": len(placed),
+                "position_mm": by_class_mm,
+                "placed_by": cutter.tolerance_class or "position_tolerance_mm",
+                "no_class_because": None,
                 "position_ms": pytest.approx(position_ms),
                 "angle_ms": pytest.approx(angle_ms),
-                "together_ms": pytest.approx(position_ms + angle_ms),
+                "play_ms": None if play_mm is None else pytest.approx(play_ms),
+                "depth_ms": None if engagement_mm is None else 0.0,
+                "together_ms": pytest.approx(position_ms + angle_ms + play_ms),
+                "root_square_ms": pytest.approx(math.sqrt(position_ms**2 + angle_ms**2 + play_ms**2)),
+                "engagement_mm": engagement_mm if engagement_mm is None else pytest.approx(engagement_mm),
                 "largest_nudge_ms": pytest.approx(largest_ms, abs=MICROSECOND_MS),
             }
         )
@@ -277,6 +344,7 @@ def assert_counted_right(laid_out: LaidOut) -> None:
     assert report["projection_count"] == len(layout["projections"])
     assert report["extra_pluck_count"] == sum("again_of" in place for place in layout["projections"])
     assert report["tracks"] == tracks_of(layout, movement, cutter)
+    assert_metal_right(report["net_section"], layout, movement, laid_out.disc.pattern)
     assert (report["load"] is None) == (report["no_load_because"] is not None)
     if report["load"]:
         assert_load_right(report["load"], layout, movement)
@@ -311,6 +379,17 @@ def test_the_report_on_a_layout_with_all_there_is_to_tell_can_be_counted_again(m
     assert min(report.total.octave_count, report.total.nudged_count, report.total.covered_count) > 3
     assert report.melody is not None
     assert report.extra_pluck_count > 3
+
+
+def test_the_report_on_a_loose_disc_cut_to_a_tolerance_class_can_be_counted_again() -> None:
+    plain = shipped_movement("fernhollow-31").model_dump(mode="json")
+    loose = movement_with({"disc/centre_hole_play_mm": 0.1}, plain)
+    cutter = cutter_with({"tolerance_class": "iso-9013-1", "net_section": None})
+
+    laid_out = walk.lay_out(TUNES["reel"](), loose, cutter, read_settings("{}"))
+
+    assert_counted_right(laid_out)
+    assert {track.error.placed_by for track in laid_out.report.tracks} == {"iso-9013-1"}
 
 
 def test_a_load_counted_again_is_the_sum_over_the_teeth_in_touch() -> None:

@@ -28,7 +28,7 @@ FIELDS = [
     *("format", "title", "fingerprint", "disc", "good_to_cut", "movement", "cutter", "engine_version"),
     *("transposed_semitones", "speed_factor", "from_s", "worth", "projection_count", "extra_pluck_count"),
     *("total", "highest", "lowest", "inner", "melody", "not_asked", "worst_bars", "tried"),
-    *("load", "no_load_because", "drive", "tracks"),
+    *("load", "no_load_because", "drive", "net_section", "tracks"),
 ]
 TALLY_FIELDS = [
     *("note_count", "kept_count", "asked_weight", "kept_weight", "kept_share", "octave_count"),
@@ -95,11 +95,38 @@ def test_a_track_tells_its_timing() -> None:
         "track": 5,
         "radius_mm": 46.48,
         "pluck_count": 1,
+        "position_mm": 0.05,
+        "placed_by": "position_tolerance_mm",
+        "no_class_because": None,
         "position_ms": pytest.approx(position_ms),
         "angle_ms": pytest.approx(angle_ms),
+        "play_ms": None,
+        "depth_ms": 0.0,
         "together_ms": pytest.approx(position_ms + angle_ms),
+        "root_square_ms": pytest.approx(math.sqrt(position_ms**2 + angle_ms**2)),
+        # depth 1.41 ± 0.20: let go at acos((3.75 − 1.21)/3.2) = 37.46°, 3.2 · (sin 37.46° − sin 14°) past the release;
+        # met at −3.2 · sin(60° − acos((3.75 − 1.61)/3.2)) = −0.638, 1.413 before it
+        "engagement_mm": pytest.approx(3.2 * (math.sin(math.acos(2.54 / 3.2)) - math.sin(math.radians(14)))),
         "largest_nudge_ms": 0.0,
     }
+
+
+def test_the_metal_left_is_written_with_its_places_and_what_the_cutter_asks_for() -> None:
+    record = report_record(laid_out_of(ONE_FOLD))["net_section"]
+
+    # One folded opening at 46.48 mm, 2.04 across: from 45.46; its far corner lies √(47.5² + 1.8945²) out
+    corner_mm = math.hypot(47.5, 1.8945)
+    assert (record["from_mm"], record["to_mm"]) == pytest.approx((45.46, corner_mm), abs=1e-3)
+    # Most is cut on the ray through that corner, 2.04 · sec atan(1.8945/47.5)
+    left_mm = corner_mm - 45.46 - 2.04 * corner_mm / 47.5
+    assert record["line"]["left_mm"] == pytest.approx(left_mm, abs=2e-3)
+    assert record["line"]["share"] == pytest.approx(left_mm / (corner_mm - 45.46), abs=2e-3)
+    ring = record["ring"]
+    assert ring["left_mm"] == pytest.approx(ring["share"] * 2 * math.pi * ring["radius_mm"])
+    assert (record["line"]["least_share"], ring["least_share"]) == (0.4, 0.4)
+    assert list(record["line"]) == ["left_mm", "share", "angle_deg", "least_share"]
+    assert list(ring) == ["left_mm", "share", "radius_mm", "least_share"]
+    assert report_record(laid_out_of(EMPTY_DISC))["net_section"] is None
 
 
 def test_melody_transpositions_load_and_notes_not_asked_for_are_written() -> None:

@@ -5,10 +5,11 @@ import pytest
 from service.commands.report_lines import WIDTH, kept_lines, percent, report_lines, worth_told
 from tests.service.fakes import NOTHING_ASKED, ONE_LOST, REPORT
 
+PLACED = {"placed_by": "position_tolerance_mm", "play_ms": None}
 TRACKS = [
-    {"track": 1, "radius_mm": 36.0, "together_ms": 24.04},
-    {"track": 2, "radius_mm": 38.62, "together_ms": 23.0},
-    {"track": 31, "radius_mm": 114.6, "together_ms": 9.05},
+    {"track": 1, "radius_mm": 36.0, "together_ms": 24.04, "root_square_ms": 17.21} | PLACED,
+    {"track": 2, "radius_mm": 38.62, "together_ms": 23.0, "root_square_ms": 16.5} | PLACED,
+    {"track": 31, "radius_mm": 114.6, "together_ms": 9.05, "root_square_ms": 6.58} | PLACED,
 ]
 WIDEST = {
     "note_count": 50_000,
@@ -140,14 +141,55 @@ def test_the_load_is_told_with_its_moment_and_chord(limit_nmm: float | None, sha
     assert words == f"load at most 45.45 N mm, {limit}, at 12.346 s: C4 (track 5), G4 (track 17)"
 
 
+def told_under(label: str, **changes: Any) -> str:
+    """The words under a label, "" where there is none."""
+    lines = told(**changes)
+    places = [place for place, line in enumerate(lines) if line.startswith(f"  {label} ")]
+    if not places:
+        return ""
+    own = [line for line in lines[places[0] + 1 :] if line.startswith("      ")]
+    return " ".join(" ".join([lines[places[0]], *own]).split()).removeprefix(f"{label} ")
+
+
 def test_the_timing_is_told_of_the_innermost_and_the_outermost_track() -> None:
-    assert told(tracks=TRACKS)[-2:] == [
-        "  timing      cut within 24.0 ms either way on track 1 (36 mm), 9.1 ms on track 31 (114.6 mm);",
-        "              report.json lists every track",
-    ]
-    assert told(tracks=TRACKS[:1])[-1] == (
-        "  timing      cut within 24.0 ms either way on track 1 (36 mm); report.json lists every track"
+    assert told_under("timing", tracks=TRACKS) == (
+        "at worst cut within 24.0 ms either way (17.2 ms by root of squares) on track 1 (36 mm), 9.1 ms (6.6 ms) on "
+        "track 31 (114.6 mm); placed by position_tolerance_mm; the centre hole's play is not stated; report.json "
+        "lists every track"
     )
+    assert told_under("timing", tracks=TRACKS[:1]).startswith(
+        "at worst cut within 24.0 ms either way (17.2 ms by root of squares) on track 1 (36 mm); placed by"
+    )
+
+
+def test_a_stated_play_and_two_ways_of_placing_are_told() -> None:
+    by_class = TRACKS[0] | {"placed_by": "iso-9013-1", "play_ms": 8.0}
+
+    words = told_under("timing", tracks=[by_class, TRACKS[2] | {"play_ms": 2.5}])
+
+    assert "; placed by iso-9013-1 and position_tolerance_mm; report.json lists" in words
+
+
+NET_SECTION = {
+    "line": {"left_mm": 65.79, "share": 0.8431, "angle_deg": 286.89, "least_share": 0.4},
+    "ring": {"left_mm": 204.5, "share": 0.7592, "radius_mm": 42.88, "least_share": 0.35},
+}
+
+
+def test_the_metal_left_is_told_with_its_places_and_what_is_asked_for() -> None:
+    assert told_under("metal", net_section=NET_SECTION) == (
+        "least left on a line 84.3 % of at least 40 % (65.8 mm, at 286.9°), on a ring 75.9 % of at least 35 % "
+        "(at 42.9 mm)"
+    )
+
+
+def test_a_cutter_that_asks_for_no_metal_is_said_to() -> None:
+    nothing_asked = {name: part | {"least_share": None} for name, part in NET_SECTION.items()}
+
+    assert told_under("metal", net_section=nothing_asked) == (
+        "least left on a line 84.3 % (65.8 mm, at 286.9°), on a ring 75.9 % (at 42.9 mm); the cutter states no least"
+    )
+    assert told_under("metal", net_section=None) == ""
 
 
 def test_the_largest_report_fits_the_width() -> None:
@@ -157,7 +199,15 @@ def test_the_largest_report_fits_the_width() -> None:
     reasons = {"outside-passage": 10_000, "past-the-turn": 10_000, "ruled-out": 10_000}
     worth = {"kept": 344_999_999, "bound": 345_000_000, "proved": False, "stopped": "nodes"}
 
-    lines = told(**voices, load=load, not_asked=reasons, worth=worth, extra_pluck_count=20_000, tracks=TRACKS)
+    lines = told(
+        **voices,
+        load=load,
+        not_asked=reasons,
+        worth=worth,
+        extra_pluck_count=20_000,
+        tracks=TRACKS,
+        net_section=NET_SECTION,
+    )
 
     assert max(map(len, lines)) <= WIDTH
     assert not [line for line in lines if "-\n" in line or line.endswith("wheel-still-")]
