@@ -47,7 +47,7 @@ def strike_path(disc: Disc, order: IntArray) -> StrikePath:
         order: Shape (n,). Projection indices in the order of the hits.
     """
     hits = hits_of(disc)
-    moves = table_moves(hits.forward_rad[order], one_way=hits.press.turns_one_way)
+    moves = table_moves(hits.forward_rad[order], take_up_rad=hits.take_up_rad)
     return StrikePath(
         turned_rad=moves.turned_rad,
         slid_mm=float(np.abs(np.diff(hits.radius_mm[order])).sum()),

@@ -51,6 +51,11 @@ class Hits:
         return fitting_tool(self.movement, self.cutter)
 
     @property
+    def take_up_rad(self) -> float:
+        """How far below an angle the table goes first; 0 where it may come onto it from either side."""
+        return math.radians(self.press.take_up_deg) if self.press.turns_one_way else 0.0
+
+    @property
     def at_mm(self) -> FloatArray:
         """Shape (n, 2). The strike points."""
         return self.placed_mm(np.array([[self.pattern.strike_u_mm, 0.0]]))[:, 0]
@@ -127,7 +132,7 @@ class Hits:
         return table_of(
             frozen_floats(self.radius_mm),
             frozen_floats(self.forward_rad),
-            one_way=self.press.turns_one_way,
+            take_up_rad=self.take_up_rad,
             turn_rad_per_s=None if turn_deg_per_s is None else math.radians(turn_deg_per_s),
             slide_mm_per_s=feeds.slide_mm_per_s,
         )

@@ -14,7 +14,6 @@ import numpy as np
 
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray, frozen_floats
 
-TAKE_UP_RAD = math.radians(1.0)  # past the angle and back; common practice: more than any worm table's backlash
 HALF_TURN_RAD = math.pi
 FULL_TURN_RAD = 2 * math.pi
 _SAME_RAD = 1e-12  # rad; two angles nearer than this are one, but for rounding
@@ -28,20 +27,22 @@ class TableMoves:
 
     Attributes:
         to_rad: Shape (n,). Forward angle of every strike, counted on over whole turns.
-        taken_up: Shape (n,). Whether the table goes TAKE_UP_RAD below the angle first, then onto it.
+        taken_up: Shape (n,). Whether the table goes take_up_rad below the angle first, then onto it.
+        take_up_rad: More than the table's backlash; 0 for a table that may come from either side.
     """
 
     to_rad: FloatArray
     taken_up: BoolArray
+    take_up_rad: float
 
     @property
     def turned_rad(self) -> float:
         """What the table turns from the first strike to the last, both ways counted."""
         plain = float(np.abs(np.diff(self.to_rad)).sum())
-        return plain + 2 * TAKE_UP_RAD * int(self.taken_up[1:].sum())
+        return plain + 2 * self.take_up_rad * int(self.taken_up[1:].sum())
 
 
-def table_moves(forward_rad: FloatArray, *, one_way: bool) -> TableMoves:
+def table_moves(forward_rad: FloatArray, *, take_up_rad: float) -> TableMoves:
     """The moves of a table that strikes at these angles in this order.
 
     From one strike to the next it takes the shorter way round, forward where both are equal; so no
@@ -50,16 +51,17 @@ def table_moves(forward_rad: FloatArray, *, one_way: bool) -> TableMoves:
 
     Args:
         forward_rad: Shape (n,). Forward angles of the strikes, any whole turns; (0,) gives no moves.
-        one_way: Whether the table comes onto every angle forwards. It then takes up the backlash
-            before the first strike and after every move back; else never.
+        take_up_rad: How far below an angle the table goes to come onto it forwards: before the first
+            strike, and after every move back. 0 for a table that may come onto it from either side.
     """
     if not len(forward_rad):
-        return TableMoves(to_rad=frozen_floats([]), taken_up=np.zeros(0, dtype=np.bool_))
+        return TableMoves(to_rad=frozen_floats([]), taken_up=np.zeros(0, dtype=np.bool_), take_up_rad=take_up_rad)
     steps = np.mod(np.diff(forward_rad), FULL_TURN_RAD)
     steps[steps > FULL_TURN_RAD - _SAME_RAD] = 0.0
     steps = np.where(steps > HALF_TURN_RAD, steps - FULL_TURN_RAD, steps)
     to_rad = frozen_floats(float(forward_rad[0]) + np.concatenate([[0.0], np.cumsum(steps)]))
-    return TableMoves(to_rad=to_rad, taken_up=one_way & np.concatenate([[True], steps < 0]))
+    taken_up = np.concatenate([[True], steps < 0]) if take_up_rad > 0 else np.zeros(len(to_rad), dtype=np.bool_)
+    return TableMoves(to_rad=to_rad, taken_up=taken_up, take_up_rad=take_up_rad)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -72,7 +74,7 @@ class Table:
         turn_ticks: Shape (n,). Forward angle of every strike, in [0, full_turn_ticks).
         slide_ticks: Shape (n,). Where the slide stands.
         full_turn_ticks: One turn of the table.
-        take_up_ticks: Turning TAKE_UP_RAD; 0 for a table that may come from either side.
+        take_up_ticks: Turning what takes up the backlash; 0 for a table that may come from either side.
     """
 
     turn_ticks: IntArray
@@ -96,7 +98,7 @@ def table_of(
     radius_mm: FloatArray,
     forward_rad: FloatArray,
     *,
-    one_way: bool,
+    take_up_rad: float,
     turn_rad_per_s: float | None,
     slide_mm_per_s: float | None,
 ) -> Table:
@@ -105,7 +107,7 @@ def table_of(
     Args:
         radius_mm: Shape (n,). Distance of each strike from the centre.
         forward_rad: Shape (n,). Its forward angle.
-        one_way: As for `table_moves`.
+        take_up_rad: As for `table_moves`.
         turn_rad_per_s: Speed of the table; None where not stated.
         slide_mm_per_s: Speed of the slide. Where either is not stated, ways are compared instead: the
             slide's own, and what the outermost strike goes on its circle.
@@ -119,5 +121,5 @@ def table_of(
         turn_ticks=np.rint(np.mod(forward_rad, FULL_TURN_RAD) * per_rad).astype(np.int64) % full_turn,
         slide_ticks=np.rint(radius_mm * per_mm).astype(np.int64),
         full_turn_ticks=full_turn,
-        take_up_ticks=round(TAKE_UP_RAD * per_rad) if one_way else 0,
+        take_up_ticks=round(take_up_rad * per_rad),
     )

@@ -10,7 +10,7 @@ import numpy as np
 from layout.cut.plan import CutPlan
 from layout.documents.making import Press
 from layout.documents.reading import FULL_TURN_DEG
-from layout.mechanics.table import TAKE_UP_RAD, table_moves
+from layout.mechanics.table import table_moves
 from layout.place.disc import Disc
 from layout.version import ENGINE_VERSION
 from layout.write.laid_out import NOT_GOOD
@@ -32,8 +32,8 @@ def write_press_program(plan: CutPlan, disc: Disc) -> bytes:
     counts on and one that takes the shortest way go the same way.
 
     A table that turns one way (`press.turns_one_way`) comes onto every hit from one side, so that its
-    backlash is always taken up: before the first hit, and wherever it goes back, it first goes a degree
-    further back, then onto the angle (common practice).
+    backlash is always taken up: before the first hit, and wherever it goes back, it first goes
+    `press.take_up_deg` further back, then onto the angle (common practice).
 
     Every hit is a move with G0, then the press's `strike_word` in a block of its own. The tool is taken up
     with the press's `change_word`. Its `{tool}` becomes a number, since a T word holds digits alone: the
@@ -116,12 +116,13 @@ def _blocks(plan: CutPlan, disc: Disc) -> Iterator[str]:
     sign = _forward_sign(disc)
     radius_mm = np.hypot(plan.at_mm[:, 0], plan.at_mm[:, 1])
     drawn_deg = np.degrees(np.arctan2(plan.at_mm[:, 1], plan.at_mm[:, 0])) % FULL_TURN_DEG
-    moves = table_moves(sign * np.radians(drawn_deg), one_way=press.turns_one_way)
-    to_deg, back_deg = sign * np.degrees(moves.to_rad), sign * math.degrees(TAKE_UP_RAD)
+    take_up_deg = press.take_up_deg if press.turns_one_way else 0.0
+    moves = table_moves(sign * np.radians(drawn_deg), take_up_rad=math.radians(take_up_deg))
+    to_deg = sign * np.degrees(moves.to_rad)
     for place, slide_mm in enumerate(radius_mm.tolist()):
         table_deg = float(to_deg[place])
         if moves.taken_up[place]:
-            yield _move(slide_mm, table_deg - back_deg)
+            yield _move(slide_mm, table_deg - sign * take_up_deg)
         yield f"{_move(slide_mm, table_deg)} (HIT {place + 1})"
         yield press.strike_word
     yield "M30"

@@ -6,17 +6,20 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from layout.mechanics.arrays import IntArray
-from layout.mechanics.hit_order import length, shortest_order
+from layout.mechanics.hit_order import NO_STRIKE, _nearest_before, _Way, length, shortest_order
 from layout.mechanics.table import Table, table_moves, table_of
 
 NOTHING_FIRST = np.zeros((0, 2), dtype=np.int64)
 places = st.lists(st.tuples(st.floats(20, 200), st.floats(0, 6.2)), max_size=14)
 
 
-def table_with(placed: list[tuple[float, float]], *, one_way: bool = True) -> Table:
+DEGREE_RAD = math.radians(1)
+
+
+def table_with(placed: list[tuple[float, float]], *, take_up_rad: float = DEGREE_RAD) -> Table:
     """Strikes at these (radius in mm, forward angle in radians); 90 degrees and 150 mm a second."""
     radius_mm, forward_rad = np.array(placed, dtype=float).reshape(-1, 2).T
-    return table_of(radius_mm, forward_rad, one_way=one_way, turn_rad_per_s=math.pi / 2, slide_mm_per_s=150.0)
+    return table_of(radius_mm, forward_rad, take_up_rad=take_up_rad, turn_rad_per_s=math.pi / 2, slide_mm_per_s=150.0)
 
 
 def least_by_trying_all(table: Table) -> int:
@@ -63,15 +66,15 @@ def test_a_circle_of_what_must_come_first_still_gives_an_order() -> None:
 
 
 @pytest.mark.parametrize("spread_rad", [0.5, 2 * math.pi], ids=["a cluster", "a whole turn"])
-@pytest.mark.parametrize("one_way", [True, False])
+@pytest.mark.parametrize("take_up_rad", [DEGREE_RAD, 0.0])
 def test_small_cases_are_within_five_in_a_hundred_of_the_best_order_there_is(
-    *, spread_rad: float, one_way: bool
+    *, spread_rad: float, take_up_rad: float
 ) -> None:
     random = np.random.default_rng(31)
     over = []
     for _ in range(12):
         placed = list(zip(random.uniform(36, 115, 8), random.uniform(0, spread_rad, 8), strict=True))
-        table = table_with(placed, one_way=one_way)
+        table = table_with(placed, take_up_rad=take_up_rad)
         over.append(length(table, shortest_order(table, NOTHING_FIRST)) / least_by_trying_all(table))
 
     assert min(over) == 1.0  # never below the best: both count the same
@@ -82,7 +85,7 @@ def test_small_cases_are_within_five_in_a_hundred_of_the_best_order_there_is(
 def test_a_table_turns_on_over_the_end_of_the_turn() -> None:
     degrees = [350, 355, 2, 7]
 
-    moves = table_moves(np.radians(degrees), one_way=True)
+    moves = table_moves(np.radians(degrees), take_up_rad=DEGREE_RAD)
 
     np.testing.assert_allclose(np.degrees(moves.to_rad), [350, 355, 362, 367])
     assert moves.taken_up.tolist() == [True, False, False, False]
@@ -90,14 +93,14 @@ def test_a_table_turns_on_over_the_end_of_the_turn() -> None:
 
 
 def test_a_move_back_goes_a_degree_too_far_and_comes_on_again() -> None:
-    moves = table_moves(np.radians([10, 20, 16]), one_way=True)
+    moves = table_moves(np.radians([10, 20, 16]), take_up_rad=DEGREE_RAD)
 
     assert moves.taken_up.tolist() == [True, False, True]
     assert math.degrees(moves.turned_rad) == pytest.approx(10 + 4 + 1 + 1)
 
 
 def test_a_table_without_backlash_comes_from_either_side() -> None:
-    moves = table_moves(np.radians([10, 20, 16]), one_way=False)
+    moves = table_moves(np.radians([10, 20, 16]), take_up_rad=0.0)
 
     assert not moves.taken_up.any()
     assert math.degrees(moves.turned_rad) == pytest.approx(10 + 4)
@@ -105,7 +108,7 @@ def test_a_table_without_backlash_comes_from_either_side() -> None:
 
 @given(st.lists(st.floats(-20, 20), max_size=12))
 def test_no_move_is_longer_than_half_a_turn_and_each_ends_on_its_angle(forward: list[float]) -> None:
-    moves = table_moves(np.array(forward), one_way=True)
+    moves = table_moves(np.array(forward), take_up_rad=DEGREE_RAD)
 
     assert (np.abs(np.diff(moves.to_rad)) <= math.pi + 1e-9).all()
     np.testing.assert_allclose(np.cos(moves.to_rad - np.array(forward)), 1.0, atol=1e-12)
@@ -116,7 +119,7 @@ def test_without_speeds_a_turn_counts_as_the_way_along_the_outermost_circle() ->
     table = table_of(
         np.array([100.0, 100.0, 85.0]),
         np.array([0.0, 0.2, 0.0]),
-        one_way=True,
+        take_up_rad=DEGREE_RAD,
         turn_rad_per_s=None,
         slide_mm_per_s=None,
     )
@@ -126,10 +129,10 @@ def test_without_speeds_a_turn_counts_as_the_way_along_the_outermost_circle() ->
     assert turned / slid == pytest.approx(20 / 15)
 
 
-@pytest.mark.parametrize(("one_way", "times"), [(True, 5 / 3), (False, 1.0)])
-def test_going_back_costs_a_degree_too_far_and_on_again(*, one_way: bool, times: float) -> None:
+@pytest.mark.parametrize(("take_up_rad", "times"), [(DEGREE_RAD, 5 / 3), (0.0, 1.0)])
+def test_going_back_costs_a_degree_too_far_and_on_again(*, take_up_rad: float, times: float) -> None:
     # three degrees on, three degrees back: 3 + 1 + 1 where the table comes from one side
-    table = table_with([(50, 0.0), (50, math.radians(3))], one_way=one_way)
+    table = table_with([(50, 0.0), (50, math.radians(3))], take_up_rad=take_up_rad)
 
     on, back = int(table.cost(np.array(0), np.array(1))), int(table.cost(np.array(1), np.array(0)))
 
@@ -145,6 +148,26 @@ def test_a_made_up_way_is_only_made_shorter() -> None:
         assert length(table, shortest_order(table, NOTHING_FIRST)) < min(length(table, by_angle), by_ring)
 
 
+def test_what_a_move_is_reckoned_to_gain_is_what_it_gains() -> None:
+    random = np.random.default_rng(67)
+    moves = []
+    for _ in range(8):
+        table = table_with(list(zip(random.uniform(36, 115, 12), random.uniform(0, 6.2, 12), strict=True)))
+        order = random.permutation(12).tolist()
+        way, near = _Way(table, order, NOTHING_FIRST), _nearest_before(table)
+        for move in way._runs_elsewhere(near) + way._runs_turned(near):
+            alone = _Way(table, order, NOTHING_FIRST)
+            assert alone._made(move, set())
+            assert sorted(alone.order) == list(range(12))
+            assert length(table, np.array(alone.order)) - length(table, np.array(order)) == move.loss
+            moves.append(move)
+
+    # of every make: runs as they are, runs turned round, to another place, before all others, and where they stand
+    assert {move.turned for move in moves} == {True, False}
+    assert any(move.target == NO_STRIKE for move in moves)
+    assert any(move.target == move.head for move in moves)
+
+
 def rings_of(table: Table) -> list[IntArray]:
     """Struck ring by ring, each round one turn from angle 0, by every number of rings up to ten."""
     ranks = np.argsort(np.argsort(table.slide_ticks))
@@ -155,7 +178,7 @@ def rings_of(table: Table) -> list[IntArray]:
 def test_any_speed_gives_an_order(speed: float) -> None:
     radius_mm, forward_rad = np.array([30.0, 40.0, 50.0]), np.array([1.0, 2.0, 3.0])
 
-    table = table_of(radius_mm, forward_rad, one_way=True, turn_rad_per_s=speed, slide_mm_per_s=1 / speed)
+    table = table_of(radius_mm, forward_rad, take_up_rad=DEGREE_RAD, turn_rad_per_s=speed, slide_mm_per_s=1 / speed)
 
     assert sorted(shortest_order(table, NOTHING_FIRST).tolist()) == [0, 1, 2]
 

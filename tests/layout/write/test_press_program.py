@@ -215,6 +215,15 @@ def test_a_press_with_words_of_its_own_gets_them() -> None:
     assert "M20" not in program
 
 
+def test_the_table_goes_back_as_far_as_the_press_states() -> None:
+    disc = disc_of(MOSSBROOK, cutter_with({"press/take_up_deg": 2.5}, PRESS), [(1, 0.0)])
+
+    program = write_press_program(planned(disc), disc).decode()
+
+    # C falls on this disc, so it comes from above: 358.9815 + 2.5 = 361.4815
+    assert "\nN3 G0 X45.0071 C361.4815\nN4 G0 X45.0071 C358.9815 (HIT 1)\n" in program
+
+
 def test_a_press_of_which_nothing_is_stated_has_the_usual_words() -> None:
     disc = disc_of(MOSSBROOK, cutter_with({"press": None}, PRESS), [(1, 0.0)])
 
