@@ -145,7 +145,7 @@ def _cells(plan: CutPlan, laid_out: LaidOut, *, scale: str, sheet: str) -> list[
         (
             8.5,
             (
-                (46, "Order number", ""),
+                (46, "Order number", laid_out.order_number or ""),
                 (46, "Verdict", verdict),
                 (36, "Engine", f"discwright {ENGINE_VERSION}"),
                 (26, "Scale", scale),

@@ -336,6 +336,13 @@ def test_a_disc_of_a_set_says_which_it_is() -> None:
     assert "Disc disc 1 of 1" in words_of(sheet_of(ONE_FOLD))
 
 
+def test_the_order_number_stands_in_the_title_block_and_room_is_left_where_there_is_none() -> None:
+    ordered = replace(laid_out_of(ONE_FOLD), order_number="2026-117/B")
+
+    assert "Order number 2026-117/B Verdict" in words_of(write_work_sheet(plan_of(ONE_FOLD), ordered, None))
+    assert "Order number Verdict" in words_of(sheet_of(ONE_FOLD))
+
+
 @pytest.mark.parametrize(
     ("title", "shown"),
     [
