@@ -8,7 +8,7 @@ import numpy as np
 
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
-from layout.mechanics.projection import Pattern, pattern_of
+from layout.mechanics.projection import Pattern, fitting_tool, pattern_of
 from layout.trial import wording
 from layout.trial.piece import Ladder, Step
 from layout.trial.rungs import Row, Rung, letters_of, opening_of, rung_of
@@ -72,6 +72,32 @@ def track_ladder(movement: Movement, tracks: Iterable[int]) -> Ladder:
         for index in tracks
     )
     return Ladder(name="tracks", steps=tuple(steps), measure=wording.MEASURE["tracks"], how=wording.track_words())
+
+
+def tool_ladders(movement: Movement, cutter: Cutter, tracks: Iterable[int]) -> tuple[Ladder, ...]:
+    """What to measure of the tool's own work on tracks, by their place from 0; none on a laser."""
+    tool = fitting_tool(movement, cutter)
+    if tool is None:
+        return ()
+    lance = {"tab-width": ("tab_width_mm", tool.tab_width_mm), "depth": ("tab_depth_mm", tool.tab_depth_mm)}
+    slot = {
+        "slot-width": ("footprint_width_mm", tool.footprint_width_mm),
+        "slot-length": ("footprint_length_mm", tool.footprint_length_mm),
+    }
+    marks, place = [f"T{index + 1}" for index in tracks], cutter.tools.index(tool)
+    return tuple(
+        Ladder(
+            name=name,
+            steps=tuple(
+                Step(mark=mark, nominal_mm=size_mm, document="cutter", field=f"/tools/{place}/{size}") for mark in marks
+            ),
+            measure=wording.MEASURE[name],
+            how=wording.tool_words(size),
+            tool=tool.tool,
+        )
+        for name, (size, size_mm) in (lance if tool.makes == "lance" else slot).items()
+        if size_mm is not None
+    )
 
 
 def _kerf(cutter: Cutter) -> Row:

@@ -26,7 +26,7 @@ class Step:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Ladder:
-    """A row of steps that tries one thing.
+    """Steps that try one thing: most in a row of their own, some on the tracks' projections.
 
     Attributes:
         name: "kerf", "tab-width", "depth", "slot-width", "slot-length", "web" or "tracks".
@@ -70,6 +70,7 @@ class TrialPiece:
         material: Of the sheet.
         thickness_mm: Of the sheet.
         drawn_from: The side the drawing shows.
+        edges: What the drawing's outlines are: finished edges, or the beam's own lines.
         drawing: What is cut and marked, in cutting order, the outline last.
         web_mm: Metal left at least between everything cut, but for the web ladder's own steps.
         ladders: What to measure, in the order of the sheet.
@@ -84,6 +85,7 @@ class TrialPiece:
     material: str
     thickness_mm: float
     drawn_from: Literal["label-side", "star-side"]
+    edges: str
     drawing: Drawing
     web_mm: float
     ladders: tuple[Ladder, ...]

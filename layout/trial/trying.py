@@ -16,7 +16,8 @@ from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Pattern, Shape, fitting_tool, pattern_of
 from layout.mechanics.spacing import core_geometries
 from layout.trial import wording
-from layout.trial.ladders import rows_of, track_ladder
+from layout.trial.beam import along_the_beam
+from layout.trial.ladders import rows_of, tool_ladders, track_ladder
 from layout.trial.lettering import LETTER_HEIGHT_MM, standing_at, text_strokes_mm
 from layout.trial.piece import Hits, Ladder, NotTried, TrialPiece
 from layout.trial.rungs import Row
@@ -66,6 +67,7 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
     holes = hub_holes(movement, features, mirror)
     # As on a disc: lances after the holes, so that none is struck beside formed metal (common practice).
     inner = (*holes, *cut) if pattern.making == "lance" else (*cut, *holes)
+    cut_entities = [along_the_beam(entity, cutter) for entity in (*inner, outline(sector))]
     return TrialPiece(
         movement_id=movement.id,
         movement_revision=movement.revision,
@@ -73,11 +75,10 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
         material=movement.disc.material,
         thickness_mm=movement.disc.thickness_mm,
         drawn_from=cutter.drawn_from,
-        drawing=Drawing(
-            entities=(*marks, *inner, outline(sector)), comments=wording.head_lines(movement, cutter, pattern.tool)
-        ),
+        edges=wording.edge_words(cutter),
+        drawing=Drawing(entities=(*marks, *cut_entities), comments=wording.head_lines(movement, cutter, pattern.tool)),
         web_mm=places.web_mm,
-        ladders=_told(movement, rows, places, tracks),
+        ladders=_told(movement, cutter, rows, places, tracks),
         hits=None if hits_mm is None else Hits(tool=pattern.tool, at_mm=hits_mm),
         not_tried=(*off_disc, *_rows_left_out(places), *absent),
         cautions=wording.cautions(movement, cutter),
@@ -242,10 +243,15 @@ def _numbered(tracks: Sequence[int], places: Spread) -> list[int]:
     return sorted({column[0], column[len(column) // 2], column[-1]}) if column else []
 
 
-def _told(movement: Movement, rows: Sequence[Row], places: Spread, tracks: Sequence[int]) -> tuple[Ladder, ...]:
+def _told(
+    movement: Movement, cutter: Cutter, rows: Sequence[Row], places: Spread, tracks: Sequence[int]
+) -> tuple[Ladder, ...]:
     ladders = [row.ladder for row in rows if row.ladder is not None and row not in places.left_out]
     ladders.sort(key=lambda ladder: ladder.name == "web")  # last: what it shows counts once kerf is right
-    return (*ladders, track_ladder(movement, _numbered(tracks, places))) if tracks else tuple(ladders)
+    numbered = _numbered(tracks, places)
+    if not numbered:
+        return tuple(ladders)
+    return (*tool_ladders(movement, cutter, numbered), *ladders, track_ladder(movement, numbered))
 
 
 def _rows_left_out(places: Spread) -> tuple[NotTried, ...]:

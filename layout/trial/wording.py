@@ -3,14 +3,15 @@
 from layout.documents.cutter import Cutter, Fold
 from layout.documents.movement import Movement
 from layout.mechanics.bending import bend_allowance_mm
+from layout.mechanics.projection import SIZE_AGREES_MM
 from layout.version import ENGINE_VERSION
 
 STOP = "STOP"
 
 MEASURE = {
     "kerf": "The width of each slot, across the travel, with a feeler or a measuring glass.",
-    "tab-width": "The width of each tab after folding, with calipers.",
-    "depth": "Each tab after folding: from the sheet's star side to its free edge, with a depth gauge.",
+    "tab-width": "The width of each tab once it stands, with calipers.",
+    "depth": "Each tab once it stands: from the sheet's star side to its free edge, with a depth gauge.",
     "slot-width": "The width of each slot, across the travel.",
     "slot-length": "The length of each slot, along the travel, over its round ends.",
     "web": "The metal between the two openings of each pair, where it is thinnest; whole, bent, burnt or torn?",
@@ -20,11 +21,14 @@ MEASURE = {
 
 def kerf_words(cutter: Cutter) -> str:
     """How kerf and least slot come from the measured widths."""
-    by_line = "kerf_mm = the mean of (measured - nominal)"
+    least = "min_slot_mm: the narrowest step that falls out clean."
     kept = f"kerf_mm = {cutter.kerf_mm:g} + the mean of (measured - nominal)"
+    if cutter.kerf_compensated:
+        return f"Cut with the beam on the lines, which allow for {cutter.kerf_mm:g} mm: {kept}. {least}"
+    by_line = "kerf_mm = the mean of (measured - nominal)"
     return (
         f"Cut with the machine's own kerf setting of {cutter.kerf_mm:g} mm: {kept}. Cut with the beam on the lines: "
-        f"{by_line}. min_slot_mm: the narrowest step that falls out clean."
+        f"{by_line}. {least}"
     )
 
 
@@ -80,6 +84,14 @@ def web_words(cutter: Cutter) -> str:
     )
 
 
+def tool_words(size: str) -> str:
+    """How a size of a press tool is corrected."""
+    return (
+        f"{size} = the mean of measured. A tool that differs from the movement's projection by more than "
+        f"{SIZE_AGREES_MM:g} mm is not taken for it: grind it, or correct the movement if its star wheels turn well."
+    )
+
+
 def track_words() -> str:
     """How a track's radius comes from where the projection meets its wheel."""
     return (
@@ -118,13 +130,20 @@ def head_lines(movement: Movement, cutter: Cutter, tool: str) -> tuple[str, ...]
         f"sheet: {movement.disc.material}, {movement.disc.thickness_mm:g} mm thick",
         f"cutter: {cutter.id}",
         f"drawn from the {side(cutter)}; origin at the disc centre; millimetres",
-        "outlines are finished edges; kerf is not added",
+        edge_words(cutter),
     ]
     if fold is not None and fold.slit == "centre-line" and movement.projection.kind == "standing":
         lines.append(f"open slits are cut along their middle, one kerf of {cutter.kerf_mm:g} mm wide")
     if tool:
         lines.append(f"hits: one point for each, where the tool strikes; tool {tool}")
     return tuple(lines)
+
+
+def edge_words(cutter: Cutter) -> str:
+    """What the outlines of the drawing are."""
+    if cutter.kerf_compensated:
+        return f"outlines are the beam's own lines, {cutter.kerf_mm / 2:g} mm inside the scrap; add no kerf"
+    return "outlines are finished edges; kerf is not added"
 
 
 def title_lines(movement: Movement, cutter: Cutter) -> tuple[str, ...]:

@@ -32,6 +32,7 @@ def trial_record(piece: TrialPiece) -> dict[str, Any]:
         "material": piece.material,
         "thickness_mm": piece.thickness_mm,
         "drawn_from": piece.drawn_from,
+        "edges": piece.edges,
         "web_mm": piece.web_mm,
         "ladders": [
             {"ladder": ladder.name, "tool": ladder.tool, "measure": ladder.measure, "step_count": len(ladder.steps)}

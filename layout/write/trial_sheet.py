@@ -25,13 +25,13 @@ NAME_WIDTH = 22 * mm
 ROW_HEIGHT, WRITING_HEIGHT = 11.0, 19.0  # 19 pt are 6.7 mm: a line of handwriting
 BLOCK_GAP = 7.0
 WORDS = {
-    "kerf": "Kerf (K)",
-    "tab-width": "Tab width (W)",
-    "depth": "Depth (D)",
-    "slot-width": "Slot width (W)",
-    "slot-length": "Slot length (L)",
-    "web": "Web: metal left (M)",
-    "tracks": "Tracks (T)",
+    "kerf": "Kerf",
+    "tab-width": "Tab width",
+    "depth": "Depth",
+    "slot-width": "Slot width",
+    "slot-length": "Slot length",
+    "web": "Web: metal left",
+    "tracks": "Tracks",
 }
 
 
@@ -63,7 +63,7 @@ def _about(piece: TrialPiece) -> list[str]:
     return [
         f"Movement {piece.movement_id}, revision {piece.movement_revision}. Cutter {piece.cutter_id}{tool}. "
         f"Sheet {piece.material}, {number(piece.thickness_mm)} mm.",
-        f"trial-piece.dxf is drawn from the {piece.drawn_from.replace('-', ' ')}; outlines are finished edges. "
+        f"trial-piece.dxf is drawn from the {piece.drawn_from.replace('-', ' ')}; {piece.edges}. "
         f"discwright {ENGINE_VERSION}.",
     ]
 

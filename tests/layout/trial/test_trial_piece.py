@@ -1,5 +1,6 @@
 import itertools
 import math
+from typing import Any
 
 import numpy as np
 import pytest
@@ -179,6 +180,27 @@ def test_each_web_stands_under_its_own_number(movement: Movement, cutter: Cutter
         assert one.distance(two) == pytest.approx(step.nominal_mm, abs=GRAIN_MM)
 
 
+@pytest.mark.parametrize(
+    ("movement", "sizes"),
+    [
+        # turn-press: L12 is its first tool, L11 its second, S22 its third.
+        (FERNHOLLOW, {"/tools/0/tab_width_mm": 1.2, "/tools/0/tab_depth_mm": 1.41}),
+        (MOSSBROOK, {"/tools/1/tab_width_mm": 1.1, "/tools/1/tab_depth_mm": 1.55}),
+        (TARNLIGHT, {"/tools/2/footprint_width_mm": 1.3, "/tools/2/footprint_length_mm": 2.2}),
+    ],
+    ids=[movement.id for movement in SHIPPED],
+)
+def test_what_a_press_tool_makes_is_measured_on_the_tracks(movement: Movement, sizes: dict[str, float]) -> None:
+    piece = trial_piece(movement, PRESS)
+
+    of_tool = [ladder for ladder in piece.ladders if ladder.tool and ladder.name != "web"]
+    [tracks] = [ladder for ladder in piece.ladders if ladder.name == "tracks"]
+    assert {step.field: step.nominal_mm for ladder in of_tool for step in ladder.steps} == sizes
+    for ladder in of_tool:
+        assert [step.mark for step in ladder.steps] == [step.mark for step in tracks.steps]
+        assert "more than 0.02 mm is not taken for it" in ladder.how
+
+
 @pytest.mark.parametrize(("movement", "cutter"), EVERY)
 def test_it_is_driven_by_the_holes_of_the_disc(movement: Movement, cutter: Cutter) -> None:
     _, read = shipped_piece(movement.id, cutter.id)
@@ -302,3 +324,46 @@ def test_open_slits_are_said_to_be_as_wide_as_the_kerf() -> None:
     piece = trial_piece(FERNHOLLOW, cutter)
 
     assert "open slits are cut along their middle, one kerf of 0.12 mm wide" in piece.drawing.comments
+
+
+FOLD = {"inside_radius_mm": 0.4, "fold_side": "behind", "relief_mm": 0.3, "slit": "channel", "slit_width_mm": 0.42}
+
+
+@pytest.mark.parametrize(
+    "changes",
+    [
+        {"fold": FOLD | {"relief_width_mm": 0.6}},
+        {"fold": FOLD | {"relief_width_mm": 0.6, "relief_ends": "round"}},
+        {"fold": FOLD | {"fold_side": "ahead"}},
+        {"fold": FOLD | {"slit": "centre-line", "slit_width_mm": None}},
+        {"drawing_release": "R12"},
+    ],
+    ids=["wide reliefs", "round reliefs", "folded ahead", "open slits", "R12"],
+)
+def test_other_ways_of_cutting_keep_things_apart_too(changes: dict[str, Any]) -> None:
+    cutter = cutter_with(changes)
+
+    piece, read = read_piece(FERNHOLLOW, cutter)
+
+    assert too_near(read, piece.web_mm) == pytest.approx([0.25, 0.375, 0.5, 0.625], abs=GRAIN_MM)
+    assert read.outline.buffer(-0.5).contains(shapely.union_all([*read.openings, *read.holes]))
+    assert {ladder.name for ladder in piece.ladders} == {"kerf", "tab-width", "depth", "web", "tracks"}
+
+
+def test_a_compensated_drawing_is_half_a_kerf_inside_the_scrap() -> None:
+    _, finished = read_piece(MOSSBROOK, LASER)
+    cutter = cutter_with({"kerf_compensated": True})
+
+    piece, read = read_piece(MOSSBROOK, cutter)
+
+    # A beam of 0.12 mm on these lines takes 0.06 mm to each side, and so leaves the finished edges.
+    assert read.outline.buffer(-0.06).symmetric_difference(finished.outline).area < 0.05
+    for mark in ("K1", "K5", "W3", "D1", "M6"):
+        one, two = at_mark(read, mark)[0], at_mark(finished, mark)[0]
+        assert size_mm(one) == pytest.approx(tuple(size - 0.12 for size in size_mm(two)), abs=GRAIN_MM)
+    for hole in read.holes:
+        nearest = min(finished.holes, key=lambda other: other.centroid.distance(hole.centroid))
+        assert hole.buffer(0.06, quad_segs=256).symmetric_difference(nearest).area < 0.01
+    assert "outlines are the beam's own lines, 0.06 mm inside the scrap; add no kerf" in piece.drawing.comments
+    [kerf] = [ladder for ladder in piece.ladders if ladder.name == "kerf"]
+    assert kerf.how.startswith("Cut with the beam on the lines, which allow for 0.12 mm: kerf_mm = 0.12 + the mean")

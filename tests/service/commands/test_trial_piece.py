@@ -22,7 +22,7 @@ def test_the_files_are_written_and_what_to_measure_is_said(
     assert code == 0
     assert {path.name: path.read_bytes() for path in (tmp_path / "new" / "trial").iterdir()} == FILES
     assert "trial piece for tarnlight-17, revision 1, on turn-press" in told
-    assert "  web     6 steps  The metal between the two openings of each pair" in told
+    assert "  web          6 steps  The metal between the two openings of each pair" in told
     assert "mind: Press: hands out of the die space" in told
     assert f"written to {tmp_path / 'new' / 'trial'}: {', '.join(TRIAL_FILES)}" in told
 
