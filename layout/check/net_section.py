@@ -18,7 +18,7 @@ def metal_holds_along_rays_and_rings(disc: Disc) -> list[Finding]:
     least = disc.cutter.net_section
     if least is None:
         return []
-    left = metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad)
+    left = metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, disc.movement.disc.features)
     if left is None:
         return []
     findings = []

@@ -12,11 +12,14 @@ from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
+import shapely
 
+from layout.documents.movement import Feature
 from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.polar import Curves, Outline, Strips, outline_of
-from layout.mechanics.projection import Pattern
+from layout.mechanics.projection import HALF_CIRCLE_BULGE, Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 LINE_GRAIN_MM = 1e-3  # mm; a micrometre, a fiftieth of what a fine cutter holds
@@ -66,12 +69,14 @@ class _Cover:
         high: Shape (n,). Where it ends there.
         unit: Of from_to. Over angles ("rad") what is covered is a length on a ray; over radii ("mm") it is
             an angle, which begins again after a turn.
+        band_mm: From where to where what is covered counts on a ray.
     """
 
     from_to: FloatArray
     low: Curves
     high: Curves
     unit: Literal["rad", "mm"]
+    band_mm: tuple[float, float]
 
     def covered(self, stretch: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
         """Shapes (k,). What is covered at either end of stretches without a corner inside, and the most in between."""
@@ -79,10 +84,14 @@ class _Cover:
         still = np.zeros(len(strip))
         low, high = self.low.of(strip, turned_rad=still), self.high.of(strip, turned_rad=still)
         first, last = stretch[which, 0], stretch[which, 1]
-        ends = [(low.crossing(at, self.unit), high.crossing(at, self.unit)) for at in (first, last)]
+        ends = [(self._crossing(low, at), self._crossing(high, at)) for at in (first, last)]
         widest = np.minimum(ends[0][0], ends[1][0]), np.maximum(ends[0][1], ends[1][1])
         at_first, at_last, most = (self._union(which, *each, len(stretch)) for each in (*ends, widest))
         return at_first, at_last, most
+
+    def _crossing(self, curves: Curves, at: FloatArray) -> FloatArray:
+        crossing = curves.crossing(at, self.unit)
+        return np.clip(crossing, *self.band_mm) if self.unit == "rad" else crossing
 
     def _over(self, place: FloatArray) -> tuple[IntArray, IntArray]:
         """Pairs of a place and a strip that lies over it; strips are in the order in which they begin."""
@@ -100,8 +109,8 @@ class _Cover:
 
     def most_alone(self) -> FloatArray:
         """Shape (n,). The most each strip covers anywhere."""
-        lows = [self.low.crossing(self.from_to[:, end], self.unit) for end in (0, 1)]
-        highs = [self.high.crossing(self.from_to[:, end], self.unit) for end in (0, 1)]
+        lows = [self._crossing(self.low, self.from_to[:, end]) for end in (0, 1)]
+        highs = [self._crossing(self.high, self.from_to[:, end]) for end in (0, 1)]
         return np.asarray(np.maximum(*highs) - np.minimum(*lows))
 
     def _union(self, group: IntArray, low: FloatArray, high: FloatArray, count: int) -> FloatArray:
@@ -126,9 +135,13 @@ class _Cover:
 
 
 def metal_left(
-    pattern: Pattern, turning: Turning, track_index: IntArray, edge_angle_rad: FloatArray
+    pattern: Pattern,
+    turning: Turning,
+    track_index: IntArray,
+    edge_angle_rad: FloatArray,
+    features: tuple[Feature, ...] = (),
 ) -> MetalLeft | None:
-    """The least metal the openings leave, within LINE_GRAIN_MM and RING_GRAIN_RAD.
+    """The least metal the openings leave in their band, within LINE_GRAIN_MM and RING_GRAIN_RAD.
 
     None where there are no openings, or where one reaches over the centre of the disc.
 
@@ -137,19 +150,23 @@ def metal_left(
         turning: The movement's turning.
         track_index: Shape (n,). Place of each opening's track, from 0.
         edge_angle_rad: Shape (n,). Working-edge angle of each opening.
+        features: The blank's holes, slots and notches: what of them lies in the band is missing too.
     """
-    outlines = {int(index): _on_track(pattern, turning, int(index)) for index in np.unique(track_index)}
-    found = {index: outline for index, outline in outlines.items() if outline is not None}
-    if not found or len(found) < len(outlines):
+    openings = [
+        (_on_track(pattern, turning, index), edge_angle_rad[track_index == index])
+        for index in np.unique(track_index).tolist()
+    ]
+    found = [(outline, angles_rad) for outline, angles_rad in openings if outline is not None]
+    if not found or len(found) < len(openings):
         return None
-    reach_mm = [outline.reach_mm for outline in found.values()]
+    reach_mm = [outline.reach_mm for outline, _ in found]
     from_mm, to_mm = min(low for low, _ in reach_mm), max(high for _, high in reach_mm)
-    line_mm, line_angle_rad = _most_covered(
-        _rays(found, track_index, edge_angle_rad), (0.0, FULL_TURN_RAD), LINE_GRAIN_MM
-    )
-    ring_rad, ring_radius_mm = _most_covered(
-        _rings(found, track_index, edge_angle_rad), (from_mm, to_mm), RING_GRAIN_RAD
-    )
+    for feature in features:
+        outline = _of_feature(feature)
+        if outline is not None and outline.reach_mm[0] < to_mm and outline.reach_mm[1] > from_mm:
+            found.append((outline, np.radians(feature.angles_deg)))
+    line_mm, line_angle_rad = _most_covered(_rays(found, (from_mm, to_mm)), (0.0, FULL_TURN_RAD), LINE_GRAIN_MM)
+    ring_rad, ring_radius_mm = _most_covered(_rings(found, (from_mm, to_mm)), (from_mm, to_mm), RING_GRAIN_RAD)
     return MetalLeft(
         from_mm=from_mm,
         to_mm=to_mm,
@@ -167,11 +184,25 @@ def _on_track(pattern: Pattern, turning: Turning, index: int) -> Outline | None:
     return outline_of(points_mm, pattern.opening.bulges * turning.direction)
 
 
-def _rays(outlines: dict[int, Outline], track_index: IntArray, edge_angle_rad: FloatArray) -> _Cover:
+def _of_feature(feature: Feature) -> Outline | None:
+    """The outline of a feature where it lies at 0 degrees: a rectangle, or a line grown by a radius."""
+    core, round_mm = feature_core_mm(feature, 0.0)
+    points_mm = shapely.get_coordinates(core)
+    if not round_mm:
+        return outline_of(points_mm[:-1], np.zeros(len(points_mm) - 1))
+    first, last = points_mm[0], points_mm[-1]
+    length_mm = float(np.hypot(*(last - first)))
+    along = (last - first) / length_mm if length_mm else np.array([1.0, 0.0])
+    across = round_mm * np.array([-along[1], along[0]])
+    corners = np.array([first - across, last - across, last + across, first + across])
+    return outline_of(corners, np.array([0.0, HALF_CIRCLE_BULGE, 0.0, HALF_CIRCLE_BULGE]))
+
+
+def _rays(outlines: list[tuple[Outline, FloatArray]], band_mm: tuple[float, float]) -> _Cover:
     """What lies on rays: strips over angle, those that reach past the full turn given a second time before it."""
     parts = []
-    for index, outline in outlines.items():
-        strips, angles_rad = outline.by_angle, edge_angle_rad[track_index == index]
+    for outline, angles_rad in outlines:
+        strips = outline.by_angle
         strip = np.tile(np.arange(len(strips.low)), len(angles_rad))
         turned_rad = np.repeat(angles_rad, len(strips.low))
         turned_rad = turned_rad - FULL_TURN_RAD * np.floor((strips.from_to[strip, 0] + turned_rad) / FULL_TURN_RAD)
@@ -179,21 +210,23 @@ def _rays(outlines: dict[int, Outline], track_index: IntArray, edge_angle_rad: F
         strip = np.concatenate([strip, strip[past]])
         turned_rad = np.concatenate([turned_rad, turned_rad[past] - FULL_TURN_RAD])
         parts.append((outline.curves, strips, strip, turned_rad, turned_rad))
-    return _joined(parts)
+    return _joined(parts, band_mm)
 
 
-def _rings(outlines: dict[int, Outline], track_index: IntArray, edge_angle_rad: FloatArray) -> _Cover:
+def _rings(outlines: list[tuple[Outline, FloatArray]], band_mm: tuple[float, float]) -> _Cover:
     """What lies on rings: strips over radius."""
     parts = []
-    for index, outline in outlines.items():
-        strips, angles_rad = outline.by_radius, edge_angle_rad[track_index == index]
+    for outline, angles_rad in outlines:
+        strips = outline.by_radius
         strip = np.tile(np.arange(len(strips.low)), len(angles_rad))
         turned_rad = np.repeat(angles_rad, len(strips.low))
         parts.append((outline.curves, strips, strip, turned_rad, np.zeros(len(strip))))
-    return _joined(parts)
+    return _joined(parts, band_mm)
 
 
-def _joined(parts: list[tuple[Curves, Strips, IntArray, FloatArray, FloatArray]]) -> _Cover:
+def _joined(
+    parts: list[tuple[Curves, Strips, IntArray, FloatArray, FloatArray]], band_mm: tuple[float, float]
+) -> _Cover:
     """The strips of all tracks: each with its curves, its strips, which of them, turned by how much, and moved."""
     from_to = np.concatenate([strips.from_to[strip] + moved[:, None] for _, strips, strip, _, moved in parts])
     low = [curves.of(strips.low[strip], turned_rad=turned) for curves, strips, strip, turned, _ in parts]
@@ -205,6 +238,7 @@ def _joined(parts: list[tuple[Curves, Strips, IntArray, FloatArray, FloatArray]]
         low=Curves.joined(low).of(order, turned_rad=still),
         high=Curves.joined(high).of(order, turned_rad=still),
         unit=parts[0][1].unit,
+        band_mm=band_mm,
     )
 
 

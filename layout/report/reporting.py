@@ -44,7 +44,9 @@ def report_on(score: Score, arrangement: Arrangement, disc: Disc) -> Report:
         tried=arrangement.tried,
         worst_bars=worst_bars(score, arrangement, fates),
         tracks=timing_of(disc, arrangement),
-        metal_left=metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad),
+        metal_left=metal_left(
+            disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, disc.movement.disc.features
+        ),
         load=load,
         no_load_because=None if load else NO_STIFFNESS if disc.projection_count else NOTHING_PLUCKED,
         drive=driving_of(disc),

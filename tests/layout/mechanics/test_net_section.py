@@ -21,7 +21,8 @@ FULL_TURN_RAD = 2 * math.pi
 
 
 def left_on(disc: Disc) -> MetalLeft:
-    left = metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad)
+    features = disc.movement.disc.features
+    left = metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, features)
     assert left is not None
     return left
 
@@ -94,6 +95,47 @@ def test_openings_across_the_start_of_the_turn_are_seen_whole() -> None:
     assert left.line_mm == pytest.approx(elsewhere.line_mm, abs=LINE_GRAIN_MM)
     assert left.ring_share == pytest.approx(elsewhere.ring_share, abs=RING_GRAIN_RAD)
     assert left.line_angle_rad == pytest.approx(math.radians(-0.6) + math.atan(1.85 / 100.8), abs=1e-6)
+
+
+def drilled(**feature: object) -> MetalLeft:
+    """A chord on tracks 1 and 2 at 90 degrees, and a feature of the blank at 200: the band is 49.2 to 60.83 mm."""
+    row = {"purpose": "drive", "first_at_deg": 200, "count": 1} | feature
+    return left_on(disc_of(movement_with({"disc/features": [row]}), [(1, 10.0), (2, 10.0)], PRESS))
+
+
+def test_a_hole_of_the_blank_in_the_band_is_missing_too() -> None:
+    left = drilled(shape="hole", radius_mm=55, width_mm=4, length_mm=4)
+
+    # a ray through its centre loses 4 mm, more than the chord's 3.2; a ring at √(55² − 2²) loses 2·asin(2/55)
+    assert left.line_mm == pytest.approx(left.to_mm - left.from_mm - 4, abs=LINE_GRAIN_MM)
+    assert left.line_angle_rad == pytest.approx(math.radians(200), abs=1e-3)
+    assert left.ring_share == pytest.approx(1 - 2 * math.asin(2 / 55) / FULL_TURN_RAD, abs=RING_GRAIN_RAD)
+    assert left.ring_radius_mm == pytest.approx(math.sqrt(55**2 - 2**2), abs=1e-3)
+
+
+def test_of_a_hole_only_what_lies_in_the_band_counts() -> None:
+    # its centre lies on the inner edge of the band, 49.2: of 8 mm the outer 4 count
+    left = drilled(shape="hole", radius_mm=49.2, width_mm=8, length_mm=8)
+
+    assert left.from_mm == pytest.approx(49.2, abs=1e-9)
+    assert left.line_mm == pytest.approx(left.to_mm - left.from_mm - 4, abs=LINE_GRAIN_MM)
+
+
+@pytest.mark.parametrize(("width_mm", "length_mm"), [(4, 9), (9, 4)])
+def test_a_slot_of_the_blank_takes_its_width_of_a_ray(width_mm: float, length_mm: float) -> None:
+    left = drilled(shape="slot", radius_mm=55, width_mm=width_mm, length_mm=length_mm)
+
+    # across the radius 9 it takes 9; along the travel its flat sides are left at 2.5 past the middle, where a ray
+    # leans atan(2.5/57): 4 · sec of it, and beyond, on the round ends, less
+    most_mm = 9 if width_mm == 9 else 4 / math.cos(math.atan(2.5 / 57))
+    assert left.to_mm - left.from_mm - left.line_mm == pytest.approx(most_mm, abs=1.5 * LINE_GRAIN_MM)
+
+
+def test_a_notch_that_ends_short_of_the_band_takes_nothing() -> None:
+    left = drilled(shape="notch", radius_mm=120, width_mm=20, length_mm=4)
+    alone = left_on(disc_of(PLAIN, [(1, 10.0), (2, 10.0)], PRESS))
+
+    assert left == alone
 
 
 def test_a_disc_without_openings_has_no_net_section() -> None:
