@@ -9,7 +9,7 @@ from layout.cut.plan import Circles, Entity, Outlines
 from layout.documents.cutter import SAME_PLACE_MM
 from layout.documents.movement import Feature, Movement
 from layout.mechanics.arrays import FloatArray, frozen_floats
-from layout.mechanics.projection import HALF_CIRCLE_BULGE
+from layout.mechanics.obround import obround_mm
 
 WIDEST_ARC_RAD = math.pi / 2  # rad; a bulge of nearly a whole circle is ill-conditioned, tan(θ/4) runs to infinity
 _DIGITS = -round(math.log10(SAME_PLACE_MM))
@@ -48,25 +48,14 @@ def _feature_holes(feature: Feature, seen: set[tuple[float, ...]]) -> Iterator[E
     if feature.length_mm == feature.width_mm:
         yield _circles(centres_mm[new], feature.width_mm / 2)
     else:
-        points_mm, bulges = _obround_mm(feature)
-        placed_mm = frozen_floats(turned_mm(points_mm, angle_rad[new]))
+        points_mm, bulges = obround_mm(feature.length_mm, feature.width_mm)
+        placed_mm = frozen_floats(turned_mm(points_mm + np.array([feature.radius_mm, 0.0]), angle_rad[new]))
         yield Outlines(layer="HOLES", points_mm=placed_mm, bulges=bulges, closed=True)
 
 
 def _circles(centres_mm: FloatArray, radius_mm: float) -> Circles:
     radii_mm = frozen_floats([radius_mm] * len(centres_mm))
     return Circles(layer="HOLES", centres_mm=frozen_floats(centres_mm), radius_mm=radii_mm)
-
-
-def _obround_mm(feature: Feature) -> tuple[FloatArray, FloatArray]:
-    """A slot with round ends, anticlockwise, at disc angle 0: x along the radius, y along the tangent."""
-    end_mm = min(feature.length_mm, feature.width_mm) / 2
-    straight_mm = max(feature.length_mm, feature.width_mm) / 2 - end_mm
-    along = np.array([(end_mm, straight_mm), (-end_mm, straight_mm), (-end_mm, -straight_mm), (end_mm, -straight_mm)])
-    bulges = frozen_floats([HALF_CIRCLE_BULGE, 0.0, HALF_CIRCLE_BULGE, 0.0])
-    if feature.length_mm < feature.width_mm:  # longer across: a quarter turn back
-        along = np.stack([along[:, 1], -along[:, 0]], axis=-1)
-    return along + np.array([feature.radius_mm, 0.0]), bulges
 
 
 def rim(movement: Movement) -> Entity:

@@ -7,6 +7,7 @@ import shapely
 from layout.cut.blank import holes, rim
 from layout.cut.inscribing import lettering
 from layout.cut.kerf import as_the_beam_runs
+from layout.cut.leads import with_leads
 from layout.cut.marks import index_mark
 from layout.cut.mirroring import mirrored, mirrored_points_mm
 from layout.cut.path import cutting_order, path_of
@@ -97,7 +98,8 @@ def _marking(disc: Disc, mirror: int) -> _Marking:
 def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
     projections, blank = cut_projections(disc, order), holes(disc.movement)
     inner = (*blank, *projections) if disc.pattern.making == "lance" else (*projections, *blank)
-    return tuple(as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement)))
+    drawn = (as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement)))
+    return tuple(led_in for entity in drawn for led_in in with_leads(entity, disc.cutter))
 
 
 def _drawing(marking: _Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
