@@ -1,8 +1,8 @@
 import io
 import math
 import re
-from dataclasses import replace
 from functools import cache
+from pathlib import Path
 
 import ezdxf.filemanagement
 import numpy as np
@@ -12,9 +12,10 @@ from shapely import affinity
 
 from layout.cut import plan_cuts
 from layout.cut.plan import CutPlan, Outlines
-from layout.cut.striking import hit_order
+from layout.documents import Movement, Settings
 from layout.mechanics.arrays import FloatArray
 from layout.place.disc import Disc
+from layout.walk import lay_out
 from layout.write import write_dxf
 from layout.write.press_program import write_press_program
 from tests.layout.examples import cutter_with
@@ -32,6 +33,7 @@ from tests.layout.write.examples import (
 )
 from tests.layout.write.press_simulator import Alarm, DryPress, Strike
 
+DEMO_TUNE = Path(__file__).parents[3] / "service" / "demo" / "tune.mid"
 # Words are written to 0.0001 mm and 0.0001°: half of both at the rim of the largest disc, 210 mm, and the drawing's own
 ROUNDING_MM = 0.5e-4 + 210 * math.radians(0.5e-4) + 1e-6
 # as the label side and the star side see them, clockwise and anticlockwise
@@ -52,11 +54,7 @@ every_disc = pytest.mark.parametrize("disc", DISCS.values(), ids=DISCS.keys())
 
 @cache
 def planned(disc: Disc, *, title: str = "Example", not_good: str | None = None) -> CutPlan:
-    """A plan struck in the order of a press."""
-    plan = plan_cuts(disc, title=title, fingerprint=FINGERPRINT, not_good=not_good)
-    order = hit_order(disc)
-    at_mm = plan.at_mm[np.argsort(plan.order)][order]
-    return replace(plan, order=order, at_mm=at_mm)
+    return plan_cuts(disc, title=title, fingerprint=FINGERPRINT, not_good=not_good)
 
 
 def dry_run(program: bytes, *, backlash_deg: float = 0.0, strike_word: str = "M20") -> list[Strike]:
@@ -89,6 +87,18 @@ def test_a_dry_run_strikes_where_the_drawing_has_its_hits(disc: Disc) -> None:
     assert apart_mm.min(axis=1).max() < ROUNDING_MM
 
 
+@pytest.mark.parametrize("movement", [FERNHOLLOW, MOSSBROOK, TARNLIGHT], ids=lambda movement: movement.id)
+def test_the_program_of_the_demo_tune_strikes_the_hits_of_its_drawing(movement: Movement) -> None:
+    disc = lay_out(DEMO_TUNE.read_bytes(), movement, PRESS, Settings()).disc
+    plan = planned(disc)
+
+    strikes = dry_run(write_press_program(plan, disc), backlash_deg=0.1)
+
+    np.testing.assert_allclose(struck_mm(strikes), drawn_hits_mm(plan, disc), atol=ROUNDING_MM, rtol=0)
+    assert {disc.cutter.tools[one.tool - 1].tool for one in strikes} == {plan.tool}
+    assert len({round(one.actual_table_deg - one.table_deg, 9) for one in strikes}) == 1
+
+
 @every_disc
 def test_strikes_follow_the_plan(disc: Disc) -> None:
     plan = planned(disc)
@@ -103,12 +113,11 @@ def test_the_tool_strikes_the_openings_of_the_record_but_for_the_turn_it_is_said
     plan = planned(disc)
     program = write_press_program(plan, disc)
     [opened] = [one for one in plan.record.entities if isinstance(one, Outlines) and one.layer == "AFTER_FORMING"]
-    # the openings stand in the order of plan_cuts; corners, and where round ends begin, are compared
-    stands = np.argsort(plan_cuts(disc, title="Example", fingerprint=FINGERPRINT, not_good=None).order)
-    drawn = [shapely.MultiPoint(points) for points in opened.points_mm[stands]]
+    # corners, and where round ends begin, are compared
+    drawn = [shapely.MultiPoint(points) for points in opened.points_mm]
 
     turned_deg = []
-    for strike, projection in zip(dry_run(program), plan.order.tolist(), strict=True):
+    for strike, opening in zip(dry_run(program), drawn, strict=True):
         tool = disc.cutter.tools[strike.tool - 1]
         half_length, half_width = tool.footprint_length_mm / 2, tool.footprint_width_mm / 2
         ends = half_length if tool.makes == "lance" else half_length - half_width  # where round ends begin
@@ -121,7 +130,7 @@ def test_the_tool_strikes_the_openings_of_the_record_but_for_the_turn_it_is_said
         ahead = disc.turning.direction * (-1 if disc.cutter.drawn_from == "star-side" else 1)
         centre = shapely.centroid(footprint)
         as_drawn = affinity.rotate(footprint, ahead * exact_deg, origin=(centre.x, centre.y))
-        assert shapely.hausdorff_distance(as_drawn, drawn[projection]) < 2 * ROUNDING_MM
+        assert shapely.hausdorff_distance(as_drawn, opening) < 2 * ROUNDING_MM
         turned_deg.append(abs(exact_deg))
 
     [said] = re.findall(rb"TURNED UP TO ([0-9.]+) DEG", program)
