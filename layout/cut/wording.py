@@ -127,6 +127,8 @@ def _plainly(side: str) -> str:
 def _how_it_is_drawn(disc: Disc) -> list[str]:
     cutter = disc.cutter
     lines = ["outlines are finished edges; kerf is not added"]
+    if cutter.kerf_compensated:
+        lines = [f"outlines are the beam's path, compensated for a kerf of {cutter.kerf_mm:g} mm already; add none"]
     if cutter.fold is not None and cutter.fold.slit == "centre-line" and disc.pattern.making == "fold":
         lines.append(f"open slits are cut along their middle, one kerf of {cutter.kerf_mm:g} mm wide")
     if cutter.fold is not None and cutter.fold.springback is not None and disc.pattern.making == "fold":

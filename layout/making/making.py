@@ -73,7 +73,8 @@ class Making:
         blank_mass_kg: The round blank before anything is cut in it; None where the density is not stated.
         disc_mass_kg: The disc as it is played: the blank less all that falls out; None as the blank's.
         time_parts: The machine's time, part by part.
-        time_s: Their sum; None where one of them is. Loading, unloading and breaking out are not in it.
+        time_s: Their sum; None where one of them is. Loading, unloading and breaking out are not in it, nor on a
+            press the blank's own holes and rim, since how they are struck is not stated.
         price_lines: One for each rate the shop states and whose quantity can be told.
         total: The lines' exact sum; None where a stated rate has no quantity, or no rate is stated.
         currency: Of the amounts, by ISO 4217; None where no rates are stated.

@@ -224,6 +224,31 @@ def test_the_head_says_how_far_a_fold_is_bent() -> None:
     assert not any(line.startswith("folds") for line in (*unknown.comments, *slots.comments))
 
 
+def test_the_head_says_whether_the_kerf_is_added_so_that_nobody_adds_it_twice() -> None:
+    added = "outlines are the beam's path, compensated for a kerf of 0.12 mm already; add none"
+    finished = "outlines are finished edges; kerf is not added"
+
+    plain, compensated = (
+        plan_of(disc_of(PLAIN, [(1, 1.0)], cutter_with({"kerf_compensated": done}))) for done in (False, True)
+    )
+
+    for drawing in (plain.disc, plain.record):
+        assert finished in drawing.comments
+        assert added not in drawing.comments
+    for drawing in (compensated.disc, compensated.record):
+        assert added in drawing.comments
+        assert finished not in drawing.comments
+
+
+def test_the_head_tells_of_open_slits_only_where_there_are_any() -> None:
+    cutter = cutter_with({"fold/slit": "centre-line", "fold/slit_width_mm": None})
+
+    folds, slots = (plan_of(disc_of(movement, [], cutter)).disc.comments for movement in (PLAIN, SHIPPED[2]))
+
+    assert any("one kerf of 0.12 mm wide" in line for line in folds)
+    assert not any("one kerf of" in line for line in slots)
+
+
 def test_lettering_warns_first_that_a_disc_is_not_good_to_cut() -> None:
     plan = plan_of(disc_of(PLAIN, [(1, 1.0)], STAR_SIDE_LASER), not_good="a trial piece")
 
