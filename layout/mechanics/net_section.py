@@ -87,7 +87,13 @@ class _Cover:
         ends = [(self._crossing(low, at), self._crossing(high, at)) for at in (first, last)]
         widest = np.minimum(ends[0][0], ends[1][0]), np.maximum(ends[0][1], ends[1][1])
         at_first, at_last, most = (self._union(which, *each, len(stretch)) for each in (*ends, widest))
-        return at_first, at_last, most
+        # Between two parallel straight pieces the width on a ray rises or falls throughout too, so at most it is
+        # what it is at an end; the sum of the widths is never below what they cover together.
+        parallel = np.abs(low.direction_rad - high.direction_rad) < _SLIVER
+        parallel &= np.isnan(low.round_mm) & np.isnan(high.round_mm) & (self.unit == "rad")
+        end_mm = np.maximum(ends[0][1] - ends[0][0], ends[1][1] - ends[1][0])
+        widths = np.where(parallel, end_mm, widest[1] - widest[0])
+        return at_first, at_last, np.minimum(most, np.bincount(which, widths, len(stretch)))
 
     def _crossing(self, curves: Curves, at: FloatArray) -> FloatArray:
         crossing = curves.crossing(at, self.unit)
