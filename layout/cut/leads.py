@@ -15,8 +15,8 @@ from layout.mechanics.lead import clear_of_lines_mm, fits_in_circle, pierced_ins
 def with_leads(entity: Entity, cutter: Cutter) -> Iterator[Entity]:
     """What is cut, each closed outline by itself with its lead before it, where the cutter wants leads.
 
-    Inner outlines are pierced inside themselves, the rim outside, in the middle of its longest arc. An
-    outline without room for its lead goes without; so do open slits.
+    Inner outlines are pierced inside themselves, the rim outside: in the middle of its longest arc, or
+    beside every bridge. An outline without room for its lead goes without; so do open slits.
 
     Args:
         entity: Seen from the label side, as it is drawn.
@@ -26,10 +26,10 @@ def with_leads(entity: Entity, cutter: Cutter) -> Iterator[Entity]:
         yield entity
     elif isinstance(entity, Circles):
         yield from _circles_with_leads(entity, cutter, cutter.lead_in.length_mm)
+    elif entity.layer == "RIM":
+        yield from (_rim_with_lead if entity.closed else _open_rim_with_lead)(entity, cutter.lead_in.length_mm)
     elif not entity.closed:
         yield entity
-    elif entity.layer == "RIM":
-        yield from _rim_with_lead(entity, cutter.lead_in.length_mm)
     else:
         yield from _outlines_with_leads(entity, cutter, cutter.lead_in.length_mm)
 
@@ -80,3 +80,10 @@ def _rim_with_lead(rim: Outlines, length_mm: float) -> Iterator[Entity]:
     around = [half_bulge, *np.roll(bulges, -piece - 1)]
     around[-1] = half_bulge
     yield replace(rim, points_mm=frozen_floats(around_mm[None]), bulges=frozen_floats(around))
+
+
+def _open_rim_with_lead(rim: Outlines, length_mm: float) -> Iterator[Entity]:
+    """A stretch of the rim between two bridges, led in from outside straight to its first end."""
+    begun_mm = rim.points_mm[0, 0]
+    yield _lead(begun_mm * (1 + length_mm / float(np.hypot(*begun_mm))), begun_mm)
+    yield rim

@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 import shapely
 
 from layout.cut.blank import holes, rim
+from layout.cut.bridges import with_bridges
 from layout.cut.inscribing import lettering
 from layout.cut.kerf import as_the_beam_runs
 from layout.cut.leads import with_leads
@@ -99,7 +100,8 @@ def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
     projections, blank = cut_projections(disc, order), holes(disc.movement)
     inner = (*blank, *projections) if disc.pattern.making == "lance" else (*projections, *blank)
     drawn = (as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement)))
-    return tuple(led_in for entity in drawn for led_in in with_leads(entity, disc.cutter))
+    held = (part for entity in drawn for part in with_bridges(entity, disc.cutter))
+    return tuple(led_in for entity in held for led_in in with_leads(entity, disc.cutter))
 
 
 def _drawing(marking: _Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:

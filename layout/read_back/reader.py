@@ -9,6 +9,7 @@ from layout.mechanics.projection import Pattern, pattern_of
 from layout.mechanics.turning import turning_of
 from layout.place.disc import Disc
 from layout.read_back.blank import compare_blank
+from layout.read_back.bridges import without_bridges
 from layout.read_back.file import read_drawing
 from layout.read_back.limits import FARTHEST_MM
 from layout.read_back.projections import Wanted, projections_of
@@ -43,7 +44,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
         DrawingReadError: The bytes are no such file.
     """
     turning, pattern = turning_of(movement), pattern_of(movement, cutter)
-    drawing = read_drawing(dxf, cutter, farthest_mm=_farthest_mm(movement, pattern))
+    as_drawn = read_drawing(dxf, cutter, farthest_mm=_farthest_mm(movement, pattern))
+    drawing = without_bridges(as_drawn, movement, cutter)
     wanted = Wanted(cutter=cutter, turning=turning, pattern=pattern)
     found = projections_of(drawing, wanted)
     disc = Disc(
