@@ -1,6 +1,6 @@
 """The walk, composed once for the command and the service: bytes in, files out.
 
-read → arrange → place → play → check → report → cut → write; and, from a drawing, read back → play → check.
+read → arrange → place → play → check → report → cut → making → write; and, from a drawing, read back → play → check.
 """
 
 import hashlib
@@ -19,6 +19,7 @@ from layout.cut.plan import CutPlan
 from layout.documents import Cutter, Movement, Settings
 from layout.errors import DocumentError, Problem
 from layout.limits import limits_told
+from layout.making import Making, making_of
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.spacing import spacing_of
 from layout.mechanics.turning import turning_of
@@ -32,23 +33,56 @@ from layout.read.score import Score
 from layout.read_back import read_back
 from layout.report import report_on
 from layout.version import ENGINE_VERSION
-from layout.write import write_dxf, write_hits, write_layout_json, write_report, write_svg
+from layout.write import (
+    write_dxf,
+    write_hits,
+    write_layout_json,
+    write_making,
+    write_press_program,
+    write_report,
+    write_svg,
+)
 from layout.write.laid_out import LaidOut
+from layout.write.work_sheet import write_work_sheet
 
-CUTTING_FILES = ("disc.dxf", "hits.csv")
-FILES = ("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json")
+PRESS_FILES = ("press.nc",)  # only where a press cuts
+CUTTING_FILES = ("disc.dxf", "hits.csv", *PRESS_FILES)
+FILES = (
+    "disc.dxf",
+    "record.dxf",
+    "disc.svg",
+    "hits.csv",
+    "press.nc",
+    "work-sheet.pdf",
+    "layout.json",
+    "report.json",
+    "making.json",
+)
 
 _NOT_ASKED = ("outside-passage", "ruled-out")
 
 LIMITS_OF_READING = limits_told(LIMITS, prefix="tune_")
 
-_WRITERS: dict[str, Callable[[CutPlan, LaidOut], bytes]] = {
-    "disc.dxf": lambda plan, laid_out: write_dxf(plan.disc, laid_out.disc.cutter),
-    "record.dxf": lambda plan, laid_out: write_dxf(plan.record, laid_out.disc.cutter),
-    "disc.svg": write_svg,
-    "hits.csv": lambda plan, laid_out: write_hits(plan, laid_out.disc),
-    "layout.json": lambda plan, laid_out: write_layout_json(laid_out, despite_findings=plan.not_good),
-    "report.json": lambda _, laid_out: write_report(laid_out),
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Planned:
+    """A layout with how it is cut and what that takes: what every writer chooses from."""
+
+    laid_out: LaidOut
+    plan: CutPlan
+    making: Making
+
+
+_WRITERS: dict[str, Callable[[_Planned], bytes]] = {
+    "disc.dxf": lambda one: write_dxf(one.plan.disc, one.laid_out.disc.cutter),
+    "record.dxf": lambda one: write_dxf(one.plan.record, one.laid_out.disc.cutter),
+    "disc.svg": lambda one: write_svg(one.plan, one.laid_out),
+    "hits.csv": lambda one: write_hits(one.plan, one.laid_out.disc),
+    "press.nc": lambda one: write_press_program(one.plan, one.laid_out.disc),
+    "work-sheet.pdf": lambda one: write_work_sheet(one.plan, one.laid_out, one.making),
+    "layout.json": lambda one: write_layout_json(one.laid_out, despite_findings=one.plan.not_good),
+    "report.json": lambda one: write_report(one.laid_out),
+    "making.json": lambda one: write_making(one.making, one.laid_out.fingerprint),
 }
 
 
@@ -163,6 +197,11 @@ def _whole_tune(score: Score, arrangements: tuple[Arrangement, ...]) -> WholeTun
     return WholeTune(onset_s=score.onset_s[asked], from_s=arrangements[0].from_s, disc_count=len(arrangements))
 
 
+def files_for(cutter: Cutter) -> tuple[str, ...]:
+    """The names of the files a layout for this cutter has, cutting files included."""
+    return tuple(name for name in FILES if cutter.kind == "punch-press" or name not in PRESS_FILES)
+
+
 def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:
     """The files of a layout, by name; the cutting files are kept back where they must be.
 
@@ -171,15 +210,18 @@ def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, byt
         not_good: A person's reason to have the cutting files although an error-level finding
             stands; they are then marked NOT GOOD TO CUT. Ignored where none stands.
     """
-    given = FILES if laid_out.good_to_cut or not_good else [name for name in FILES if name not in CUTTING_FILES]
+    made = files_for(laid_out.disc.cutter)
+    given = made if laid_out.good_to_cut or not_good else [name for name in made if name not in CUTTING_FILES]
     plan = plan_cuts(
         laid_out.disc,
         title=laid_out.title,
         fingerprint=laid_out.fingerprint,
         not_good=None if laid_out.good_to_cut else not_good,
         part=laid_out.part,
+        order_number=laid_out.order_number,
     )
-    return {name: _WRITERS[name](plan, laid_out) for name in given}
+    planned = _Planned(laid_out=laid_out, plan=plan, making=making_of(laid_out.disc, plan))
+    return {name: _WRITERS[name](planned) for name in given}
 
 
 def check_drawing(dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:

@@ -19,6 +19,8 @@ ToleranceClass = Literal["iso-9013-1", "iso-9013-2", "iso-2768-f", "iso-2768-m",
 
 
 def _money(value: object) -> object:
+    if isinstance(value, Decimal):
+        return value  # a document that is checked already
     text = value if isinstance(value, str) else None
     if text is None or re.fullmatch(r"\d{1,9}(\.\d{1,6})?", text) is None:
         raise ValueError(f'an amount is text with a decimal number, such as "12.50"; got {value!r}')

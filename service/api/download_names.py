@@ -19,6 +19,9 @@ ENDINGS = {
     "hits.csv": "_hits.csv",
     "layout.json": "_layout.json",
     "report.json": "_report.json",
+    "press.nc": "_press.nc",
+    "work-sheet.pdf": "_work-sheet.pdf",
+    "making.json": "_making.json",
     ALL_FILES: "_all-files.zip",
 }
 

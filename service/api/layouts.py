@@ -10,7 +10,7 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
-from layout.walk import CUTTING_FILES, FILES
+from layout.walk import CUTTING_FILES, FILES, files_for
 from service.api.answers import JSON_MEDIA_TYPE, ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.desk import LayoutDesk
@@ -29,6 +29,9 @@ MEDIA_TYPES = {
     "hits.csv": "text/csv; charset=utf-8",
     "layout.json": JSON_MEDIA_TYPE,
     "report.json": JSON_MEDIA_TYPE,
+    "press.nc": "text/plain; charset=us-ascii",  # ISO 6983 has no media type of its own
+    "work-sheet.pdf": "application/pdf",
+    "making.json": JSON_MEDIA_TYPE,
 }
 # What a POST can answer with, by media type; the first where the client does not mind.
 ANSWERS: dict[str, str | None] = {
@@ -78,12 +81,11 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
     @routes.get("/<fingerprint>/<file_name>")
     def give_file(fingerprint: str, file_name: str) -> Response:
         if file_name not in FILES:
-            raise ProblemError(
-                name="route-unknown",
-                detail=f"a layout has no file called {file_name!r}; it has {', '.join(FILES)}",
-                more={"known_files": list(FILES)},
-            )
+            raise _no_such_file(file_name, "a layout", FILES)
         kept = _found(desk, fingerprint)
+        cutter = kept.inputs.read().cutter
+        if file_name not in files_for(cutter):
+            raise _no_such_file(file_name, f"a layout for {cutter.id}, a {cutter.kind},", files_for(cutter))
         response = teller.file(kept, file_name, reason_asked("despite_findings"))
         response.make_conditional(request)
         return response
@@ -232,6 +234,14 @@ def _found(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
             "the same input gives the same layout and the same fingerprint",
         )
     return kept
+
+
+def _no_such_file(file_name: str, owner: str, known: Sequence[str]) -> ProblemError:
+    return ProblemError(
+        name="route-unknown",
+        detail=f"{owner} has no file called {file_name!r}; it has {', '.join(known)}",
+        more={"known_files": list(known)},
+    )
 
 
 def _kept_back(kept: KeptLayout, file_name: str) -> ProblemError:

@@ -8,24 +8,25 @@ from pathlib import Path
 from typing import Any
 
 from layout.documents import Cutter, Movement
-from layout.walk import CUTTING_FILES, FILES
+from layout.walk import CUTTING_FILES, files_for
 from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter, folder
 from service.commands.disc_folders import disc_folders, earlier_folders
 from service.commands.errors import ERROR_STANDS, GOOD, CommandError
 from service.commands.files_in import read_file, read_named_cutter, read_named_movement, read_named_settings
 from service.commands.files_out import write_folders
 from service.commands.findings import finding_lines
+from service.commands.making_lines import making_lines
 from service.commands.output import say, say_json
 from service.commands.report_lines import kept_lines, report_lines
 from service.reason import ReasonError, checked_reason
 
 ABOUT = (
-    "Make the files of a disc from a MIDI file. They are disc.dxf and hits.csv (to cut), record.dxf (to read, "
-    "never to cut), disc.svg (to look at), layout.json (for programs) and report.json (what is kept, and what that "
-    "cost; told here in short). Settings that ask for several discs give each a folder of its own, DIR/1, DIR/2 and "
-    "so on. Ends with 0 where every disc is good to "
-    "cut, with 3 where an error-level finding stands (disc.dxf and hits.csv are then kept back), with 2 where the "
-    "input cannot be used (nothing is written)."
+    "Make the files of a disc from a MIDI file: disc.dxf and hits.csv (to cut), for a press press.nc too, record.dxf "
+    "(to read, never to cut), disc.svg (to look at), work-sheet.pdf (for the bench), layout.json (for programs), "
+    "report.json (what is kept, and what that cost) and making.json (time, mass and price); the last two are told here "
+    "in short. Settings that ask for several discs give each a folder of its own, DIR/1, DIR/2 and so on. Ends with 0 "
+    "where every disc is good to cut, with 3 where an error-level finding stands (what is to cut is kept back then), "
+    "with 2 where the input cannot be used (nothing is written)."
 )
 EXAMPLE = """example:
   discwright plan dance.mid --movement fernhollow-31 --out dance
@@ -63,13 +64,13 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     discs = tools.planner.lay_out_discs(tune, movement, cutter, settings, time.monotonic)
     written = _write(asked.out, [tools.planner.files_of(disc, not_good=reason) for disc in discs])
     if asked.json:
-        say_json(_told(written))
+        say_json(_told(written, cutter))
     else:
         for made, laid_out in zip(written.discs, discs, strict=True):
             part = "" if len(discs) == 1 else f", disc {laid_out.disc_number} of {laid_out.disc_count}"
             say([f"{laid_out.title}{part}", *layout_lines(made.layout, made.report, movement, cutter)])
-            say([*report_lines(made.report), *finding_lines(made.layout["findings"])])
-            say(["good to cut" if made.layout["good_to_cut"] else "NOT GOOD TO CUT", *_file_lines(made)])
+            say([*report_lines(made.report), *making_lines(made.making), *finding_lines(made.layout["findings"])])
+            say(["good to cut" if made.layout["good_to_cut"] else "NOT GOOD TO CUT", *_file_lines(made, cutter)])
         if written.removed:
             say([f"removed from {asked.out}, as they were of earlier discs: {', '.join(written.removed)}"])
     return GOOD if all(disc.good_to_cut for disc in discs) else ERROR_STANDS
@@ -95,6 +96,12 @@ class _Made:
         report: dict[str, Any] = json.loads(self.files["report.json"])
         return report
 
+    @property
+    def making(self) -> dict[str, Any]:
+        """Content of making.json."""
+        making: dict[str, Any] = json.loads(self.files["making.json"])
+        return making
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Written:
@@ -114,16 +121,17 @@ def _write(out: Path, files_of_discs: list[dict[str, bytes]]) -> _Written:
     )
 
 
-def _told(written: _Written) -> dict[str, Any]:
+def _told(written: _Written, cutter: Cutter) -> dict[str, Any]:
     """What was made, for programs: of one disc its own, of several a list."""
     discs = [
         {
             "good_to_cut": made.layout["good_to_cut"],
             "files": {name: str(made.folder / name) for name in made.files},
-            "kept_back": [name for name in FILES if name not in made.files],
+            "kept_back": [name for name in files_for(cutter) if name not in made.files],
             "removed": list(made.removed),
             "layout": made.layout,
             "report": made.report,
+            "making": made.making,
         }
         for made in written.discs
     ]
@@ -164,10 +172,11 @@ def layout_lines(layout: dict[str, Any], report: dict[str, Any], movement: Movem
     ]
 
 
-def _file_lines(made: _Made) -> list[str]:
+def _file_lines(made: _Made, cutter: Cutter) -> list[str]:
     lines = [f"written to {made.folder}: {', '.join(made.files)}"]
     if CUTTING_FILES[0] not in made.files:
-        lines.append(f"kept back: {', '.join(CUTTING_FILES)}; --despite-findings REASON gives them, marked")
+        kept_back = [name for name in files_for(cutter) if name in CUTTING_FILES]
+        lines.append(f"kept back: {', '.join(kept_back)}; --despite-findings REASON gives them, marked")
     if made.removed:
         lines.append(f"removed from {made.folder}, as they were of an earlier disc: {', '.join(made.removed)}")
     return lines

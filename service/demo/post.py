@@ -21,7 +21,7 @@ from typing import Any
 import mido
 
 ANSWER_WITHIN_S = 120.0  # as long as service/up lets a worker compute
-CUTTING_FILES = ("disc.dxf", "hits.csv")  # what the service keeps back while an error stands
+CUTTING_FILES = ("disc.dxf", "hits.csv", "press.nc")  # what the service keeps back while an error stands
 OUTSIDE = "outside-passage"  # the reason of notes the demo did not ask for
 INTERRUPTED = 130  # common practice: 128 + the number of SIGINT
 

@@ -98,6 +98,22 @@ REPORT: dict[str, Any] = {
     "tracks": [],
 }
 
+# What making.json holds of a disc with two projections, its price not to be told.
+MAKING: dict[str, Any] = {
+    "format": "discwright-making/1",
+    "cut_length_mm": 1250.0,
+    "pierce_count": 4,
+    "hit_count": 0,
+    "hit_force_n": None,
+    "stripping_force_n": None,
+    "blank_mass_kg": 0.1734,
+    "time_s": 65.4,
+    "currency": None,
+    "price_lines": [],
+    "total": None,
+    "not_stated": ["cutter.rates"],
+}
+
 
 @dataclass
 class FakeLayout:
@@ -189,13 +205,14 @@ class FakePlanner:
 
     def files_of(self, laid_out: FakeLayout, *, not_good: str | None = None) -> dict[str, bytes]:
         mark = "" if laid_out.good_to_cut or not_good is None else f" NOT GOOD TO CUT: {not_good}"
-        names = ["disc.dxf", "record.dxf", "disc.svg", "hits.csv"]
+        names = ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "work-sheet.pdf"]
         if not laid_out.good_to_cut and not_good is None:
-            names = ["record.dxf", "disc.svg"]
+            names = ["record.dxf", "disc.svg", "work-sheet.pdf"]
         part = "" if laid_out.disc_count == 1 else f" {laid_out.disc_number}/{laid_out.disc_count}"
         files = {name: f"{name} of {laid_out.title}{part}{mark}".encode() for name in names}
         record = laid_out.record | {"despite_findings": not_good if mark else None}
-        return {**files, "layout.json": json.dumps(record).encode(), "report.json": json.dumps(REPORT).encode()}
+        told = {"layout.json": record, "report.json": REPORT, "making.json": MAKING}
+        return {**files, **{name: json.dumps(content).encode() for name, content in told.items()}}
 
     def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> FakeReading:
         good = all(finding.level is not Level.ERROR for finding in self.findings)

@@ -10,9 +10,11 @@ from pathlib import Path
 
 import pytest
 
-from layout.walk import FILES
+from layout.documents import shipped_cutter
+from layout.walk import files_for
 
 TOP = Path(__file__).parents[2]
+LASER_FILES = set(files_for(shipped_cutter("fibre-laser")))
 MOVEMENTS = {"fernhollow-31", "mossbrook-67", "tarnlight-17"}
 Ended = subprocess.CompletedProcess[str]
 
@@ -55,7 +57,9 @@ def test_a_fresh_start_makes_a_good_disc_for_every_movement_and_ends(first_start
     assert "NOT GOOD" not in first_start.stdout
     assert len(re.findall(r"kept \d+ of ", first_start.stdout)) == 3
     for movement in MOVEMENTS:
-        assert {path.name for path in (copy / "demo" / movement).iterdir()} == set(FILES)
+        assert {path.name for path in (copy / "demo" / movement).iterdir()} == set(
+            files_for(shipped_cutter("fibre-laser"))
+        )
         assert f"written to demo/{movement}" in first_start.stdout
 
 
@@ -83,7 +87,7 @@ def test_an_installed_command_needs_no_sources(first_start: Ended, copy: Path, t
 
     assert installed.returncode == 0, installed.stderr
     assert planned.returncode == 0, planned.stderr
-    assert {path.name for path in (tmp_path / "made").iterdir()} == set(FILES)
+    assert {path.name for path in (tmp_path / "made").iterdir()} == LASER_FILES
 
 
 def test_the_image_copies_what_there_is_and_starts_the_app_that_is_there() -> None:

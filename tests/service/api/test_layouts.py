@@ -9,6 +9,12 @@ from tests.service.fakes import THIN_WEB, TUNE, Client, FakePlanner, client_of
 
 TUNE_MEDIA_TYPES = ["audio/midi", "audio/x-midi", "audio/mid", "application/x-midi", "application/octet-stream"]
 
+LASER_FILES = [
+    *("disc.dxf", "record.dxf", "disc.svg", "hits.csv"),
+    *("work-sheet.pdf", "layout.json", "report.json", "making.json"),
+]
+GIVEN_ALL_THE_SAME = [name for name in LASER_FILES if name not in ("disc.dxf", "hits.csv")]
+
 
 def own_movement() -> bytes:
     return shipped_movement("fernhollow-31").model_dump_json(exclude_none=True).replace("fernhollow", "mine").encode()
@@ -41,7 +47,16 @@ def test_every_link_leads_to_its_file(client: Client) -> None:
 
     answers = {name: client.get(path) for name, path in links.items()}
 
-    assert list(links) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json"]
+    assert list(links) == [
+        "disc.dxf",
+        "record.dxf",
+        "disc.svg",
+        "hits.csv",
+        "work-sheet.pdf",
+        "layout.json",
+        "report.json",
+        "making.json",
+    ]
     assert {name: answer.status_code for name, answer in answers.items()} == dict.fromkeys(links, 200)
     assert {name: answer.content_type for name, answer in answers.items()} == {
         "disc.dxf": "image/vnd.dxf",
@@ -50,6 +65,8 @@ def test_every_link_leads_to_its_file(client: Client) -> None:
         "hits.csv": "text/csv; charset=utf-8",
         "layout.json": "application/json",
         "report.json": "application/json",
+        "work-sheet.pdf": "application/pdf",
+        "making.json": "application/json",
     }
     assert answers["record.dxf"].data == b"record.dxf of Harvest Dance"
 
@@ -135,7 +152,17 @@ def test_a_layout_made_by_one_worker_is_found_by_the_other(tmp_path: Path) -> No
 
     answers = [other.get(path).status_code for path in links.values()]
 
-    assert answers == [200] * 6
+    assert answers == [200] * len(LASER_FILES)
+
+
+def test_a_file_that_only_a_press_has_is_none_of_a_laser_s(client: Client) -> None:
+    made = client.post_tune()
+
+    answer = client.get(f"{made.headers['Location']}/press.nc")
+
+    assert answer.status_code == 404
+    assert "a layout for fibre-laser, a laser, has no file called 'press.nc'" in answer.json["detail"]
+    assert answer.json["known_files"] == LASER_FILES
 
 
 def test_cutting_files_are_kept_back_where_an_error_stands(faulty_client: Client) -> None:
@@ -145,7 +172,14 @@ def test_cutting_files_are_kept_back_where_an_error_stands(faulty_client: Client
 
     assert made.status_code == 201
     assert made.json["good_to_cut"] is False
-    assert list(made.json["links"]) == ["record.dxf", "disc.svg", "layout.json", "report.json"]
+    assert list(made.json["links"]) == [
+        "record.dxf",
+        "disc.svg",
+        "work-sheet.pdf",
+        "layout.json",
+        "report.json",
+        "making.json",
+    ]
     assert refused.status_code == 422
     assert refused.json["findings"] == made.json["layout"]["findings"]
 
@@ -156,7 +190,16 @@ def test_a_reason_gives_cutting_files_that_say_what_they_are(faulty_client: Clie
 
     given = faulty_client.get(made.json["links"][name])
 
-    assert list(made.json["links"]) == ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json"]
+    assert list(made.json["links"]) == [
+        "disc.dxf",
+        "record.dxf",
+        "disc.svg",
+        "hits.csv",
+        "work-sheet.pdf",
+        "layout.json",
+        "report.json",
+        "making.json",
+    ]
     assert made.json["layout"]["despite_findings"] == "a trial cut"
     assert given.status_code == 200
     assert given.data == f"{name} of Harvest Dance NOT GOOD TO CUT: a trial cut".encode()

@@ -8,7 +8,16 @@ from werkzeug.test import TestResponse
 
 from tests.service.fakes import THIN_WEB, TUNE, Client, FakePlanner, client_of
 
-FILES = ["disc.dxf", "record.dxf", "disc.svg", "hits.csv", "layout.json", "report.json"]
+FILES = [
+    "disc.dxf",
+    "record.dxf",
+    "disc.svg",
+    "hits.csv",
+    "work-sheet.pdf",
+    "layout.json",
+    "report.json",
+    "making.json",
+]
 
 
 def post(client: Client, discs: int = 3, query: str = "", **headers: str) -> TestResponse:

@@ -9,8 +9,24 @@ from layout.documents import shipped_cutter, shipped_movement
 from tests.service.commands.conftest import Discwright
 from tests.service.fakes import BROKEN_TUNE, NEAR_RIM, THIN_WEB, FakePlanner
 
-FILES = ["disc.dxf", "hits.csv", "record.dxf", "disc.svg", "layout.json", "report.json"]
-SHOWN = ["disc.svg", "layout.json", "record.dxf", "report.json"]  # what an error does not keep back
+FILES = [
+    "disc.dxf",
+    "hits.csv",
+    "record.dxf",
+    "disc.svg",
+    "work-sheet.pdf",
+    "layout.json",
+    "report.json",
+    "making.json",
+]
+SHOWN = [
+    "disc.svg",
+    "layout.json",
+    "making.json",
+    "record.dxf",
+    "report.json",
+    "work-sheet.pdf",
+]  # what an error does not keep back
 MOVEMENT = ("--movement", "fernhollow-31")
 
 
@@ -28,7 +44,7 @@ def complaint(capsys: pytest.CaptureFixture[str]) -> str:
     return told.err
 
 
-def test_a_good_disc_gives_six_files_and_exit_0(discwright: Discwright, tune: Path, tmp_path: Path) -> None:
+def test_a_good_disc_gives_its_files_and_exit_0(discwright: Discwright, tune: Path, tmp_path: Path) -> None:
     code = discwright("plan", tune, *MOVEMENT, "--out", tmp_path / "a" / "b")
 
     assert code == 0
@@ -63,10 +79,13 @@ def test_the_summary_says_what_the_disc_keeps(
         "  worst bar    from  notes  lost  weight lost",
         "  2          1.50 s      3     1       33.3 %",
         "  load        not known: nothing is lifted",
+        "  making      1.25 m of cut with 4 pierces; machine time 1 min 5 s; blank 0.173 kg",
+        "  not stated  cutter.rates",
         "warning web-to-rim: the web to the rim is 0.52 mm, near 0.5 mm",
         "    what helps: cut a trial piece",
         "good to cut",
-        f"written to {tmp_path / 'out'}: disc.dxf, record.dxf, disc.svg, hits.csv, layout.json, report.json",
+        f"written to {tmp_path / 'out'}: disc.dxf, record.dxf, disc.svg, hits.csv, work-sheet.pdf, "
+        "layout.json, report.json, making.json",
     ]
 
 
@@ -136,9 +155,10 @@ def test_json_is_all_that_stands_on_stdout(
     answer = json.loads(told.out)
     assert code == 3
     assert told.err == ""
-    assert set(answer) == {"good_to_cut", "files", "kept_back", "removed", "layout", "report"}
+    assert set(answer) == {"good_to_cut", "files", "kept_back", "removed", "layout", "report", "making"}
     assert answer["layout"] == json.loads((tmp_path / "out" / "layout.json").read_text())
     assert answer["report"] == json.loads((tmp_path / "out" / "report.json").read_text())
+    assert answer["making"] == json.loads((tmp_path / "out" / "making.json").read_text())
     assert answer["kept_back"] == ["disc.dxf", "hits.csv"]
     assert {name: Path(path).read_bytes() for name, path in answer["files"].items()} == {
         name: (tmp_path / "out" / name).read_bytes() for name in SHOWN

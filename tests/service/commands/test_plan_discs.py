@@ -7,8 +7,17 @@ import pytest
 from tests.service.commands.conftest import Discwright
 from tests.service.fakes import THIN_WEB, FakePlanner
 
-FILES = ["disc.dxf", "disc.svg", "hits.csv", "layout.json", "record.dxf", "report.json"]
-SHOWN = ["disc.svg", "layout.json", "record.dxf", "report.json"]
+FILES = [
+    "disc.dxf",
+    "disc.svg",
+    "hits.csv",
+    "layout.json",
+    "making.json",
+    "record.dxf",
+    "report.json",
+    "work-sheet.pdf",
+]
+SHOWN = ["disc.svg", "layout.json", "making.json", "record.dxf", "report.json", "work-sheet.pdf"]
 MOVEMENT = ("--movement", "fernhollow-31")
 
 
@@ -210,13 +219,13 @@ def test_interrupted_while_renaming_no_cutting_file_of_two_sets_stands(
     planner.title = "Another"
     renamed = []
 
-    def stop_after_nine(source: Path, target: Path) -> None:
-        if len(renamed) == 9:  # four files of each disc that are not cut, and one that is
+    def stop_after_thirteen(source: Path, target: Path) -> None:
+        if len(renamed) == 13:  # six files of each disc that are not cut, and one that is
             raise KeyboardInterrupt
         renamed.append(target)
         target.write_bytes(source.read_bytes())
 
-    monkeypatch.setattr(os, "replace", stop_after_nine)
+    monkeypatch.setattr(os, "replace", stop_after_thirteen)
 
     code = discwright("plan", tune, *MOVEMENT, "--settings", two, "--out", out)
 
