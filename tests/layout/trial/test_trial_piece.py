@@ -5,8 +5,11 @@ from typing import Any
 import numpy as np
 import pytest
 import shapely
+from ezdxf.math import bulge_to_arc
 
 from layout.cut import plan_cuts
+from layout.cut.lettering import strokes_mm
+from layout.cut.plan import Outlines
 from layout.documents import Cutter, Movement
 from layout.errors import DocumentError
 from layout.mechanics.frame import on_disc_mm
@@ -367,3 +370,45 @@ def test_a_compensated_drawing_is_half_a_kerf_inside_the_scrap() -> None:
     assert "outlines are the beam's own lines, 0.06 mm inside the scrap; add no kerf" in piece.drawing.comments
     [kerf] = [ladder for ladder in piece.ladders if ladder.name == "kerf"]
     assert kerf.how.startswith("Cut with the beam on the lines, which allow for 0.12 mm: kerf_mm = 0.12 + the mean")
+
+
+@pytest.mark.parametrize(("movement", "cutter"), EVERY)
+def test_letters_read_right_on_the_side_drawn_with_their_tops_away_from_the_centre(
+    movement: Movement, cutter: Cutter
+) -> None:
+    _, read = shipped_piece(movement.id, cutter.id)
+
+    for mark in ("M1", "M6", "T1", "STOP"):
+        engraved = shapely.get_coordinates(read.letters[mark]) @ [1, 1j]
+        upright = np.concatenate(strokes_mm(mark, 1.8)) @ [1, 1j]  # as the disc's own lettering draws them
+        turn = np.diff(engraved)[np.abs(np.diff(upright)) > 0.1] / np.diff(upright)[np.abs(np.diff(upright)) > 0.1]
+        assert turn == pytest.approx(turn[0], abs=1e-4)
+        assert abs(turn[0]) == pytest.approx(1.0, abs=1e-4)
+        outwards = engraved.mean() / abs(engraved.mean())
+        assert (turn[0] * 1j / outwards).real > 0.99
+
+
+def test_the_outer_corners_are_round_and_run_smoothly_into_rim_and_sides() -> None:
+    [outline] = [entity for entity in trial_piece(FERNHOLLOW, LASER).drawing.entities if entity.layer == "RIM"]
+    assert isinstance(outline, Outlines)
+    points, bulges = [tuple(point) for point in outline.points_mm[0]], outline.bulges.tolist()
+
+    arcs = [
+        bulge_to_arc(start, end, bulge)
+        for start, end, bulge in zip(points, points[1:] + points[:1], bulges, strict=True)
+        if bulge
+    ]
+    corners = [(centre, radius) for centre, _, _, radius in arcs if centre.magnitude > 1]
+    assert [radius for _, radius in corners] == pytest.approx([3.0, 3.0])
+    for centre, radius in corners:
+        # A circle touches another from inside where their centres are apart by the difference of their radii.
+        assert centre.magnitude == pytest.approx(118.5 - radius)
+    # The straight sides point to the centre, and each stands 3 mm from its corner's middle.
+    sides = [
+        (start, end) for start, end, bulge in zip(points, points[1:] + points[:1], bulges, strict=True) if not bulge
+    ]
+    assert len(sides) == 2
+    for start, end in sides:
+        assert abs(start[0] * end[1] - start[1] * end[0]) < 1e-6
+        line = shapely.LineString([start, end])
+        assert min(line.distance(shapely.Point(centre.x, centre.y)) for centre, _ in corners) == pytest.approx(3.0)
