@@ -8,6 +8,7 @@ cutter's min_web_mm and min_slot_mm stay its own hard limits whatever the sheet.
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass, field
+from itertools import pairwise
 from typing import Literal
 
 import numpy as np
@@ -16,6 +17,8 @@ from numpy.typing import NDArray
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM
+from layout.documents.cutter import WIDEST_WEB_MM
+from layout.mechanics.arrays import FloatArray
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
@@ -39,10 +42,11 @@ _REMEDY = {
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Size:
-    """A feature that was measured: what it is, how wide, where."""
+    """A feature that was measured: what it is, how wide, where; and how many others of its level it stands for."""
 
     what: str
     size_mm: float
+    others_count: int = 0
     at: Place = field(default_factory=Place)
 
 
@@ -58,7 +62,7 @@ def features_suit_the_sheet(disc: Disc) -> list[Finding]:
     thickness_mm = disc.movement.disc.thickness_mm
     kinds: tuple[tuple[Kind, tuple[float, float, float], Iterator[_Size]], ...] = (
         ("hole", rules.hole, _holes(disc)),
-        ("web", rules.web, _webs(disc, max(rules.web) * thickness_mm)),
+        ("web", rules.web, _webs(disc, tuple(ratio * thickness_mm for ratio in rules.web))),
         ("edge", rules.edge, _edges(disc)),
         ("slit", rules.slit, _slits(disc)),
     )
@@ -75,7 +79,8 @@ def _judged(disc: Disc, kind: Kind, ratios: tuple[float, float, float], sizes: l
         if not small:
             continue
         worst = min(small, key=lambda size: size.size_mm)
-        others = f" {len(small) - 1} more are below that." if len(small) > 1 else ""
+        count = sum(1 + size.others_count for size in small)
+        others = f" {count - 1} more are below that." if count > 1 else ""
         findings.append(
             Finding(
                 code=Code.SMALL_FOR_SHEET,
@@ -137,30 +142,48 @@ def _edges(disc: Disc) -> Iterator[_Size]:
         yield _Size(what=what, size_mm=nearest_mm - hole_mm, at=at)
 
 
-def _webs(disc: Disc, most_mm: float) -> Iterator[_Size]:
-    """Webs below a width, between two openings and between an opening and a hole, slot or notch of the blank."""
-    round_mm = disc.pattern.core_round_mm
+def _webs(disc: Disc, limits_mm: tuple[float, ...]) -> Iterator[_Size]:
+    """The thinnest web of each level, between two openings and between an opening and a feature of the blank.
+
+    Webs above WIDEST_WEB_MM are not looked for, whatever the rule: no disc is that thick.
+    """
+    most_mm, round_mm = min(limits_mm[-1], WIDEST_WEB_MM), disc.pattern.core_round_mm
     cores = _cores(disc, disc.radius_mm, disc.edge_angle_rad)
     tree = shapely.STRtree(cores)
     one, two = tree.query(cores, predicate="dwithin", distance=most_mm + 2 * round_mm)
     one, two = one[one < two], two[one < two]
     webs_mm = shapely.distance(cores[one], cores[two]) - 2 * round_mm
-    for place in np.flatnonzero(webs_mm < most_mm).tolist():
+    for place, others_count in _thinnest(webs_mm, limits_mm):
         pair = (int(one[place]), int(two[place]))
         tracks = tuple(int(disc.track_index[index]) + 1 for index in pair)
-        what = f"The web between two openings on tracks {tracks[0]} and {tracks[1]}"
-        yield _Size(what=what, size_mm=float(webs_mm[place]), at=_at(disc, pair, tracks))
+        yield _Size(
+            what=f"The web between two openings on tracks {tracks[0]} and {tracks[1]}",
+            size_mm=float(webs_mm[place]),
+            others_count=others_count,
+            at=_at(disc, pair, tracks),
+        )
     for feature in disc.movement.disc.features:
-        for angle_deg in feature.angles_deg:
-            core, feature_round_mm = feature_core_mm(feature, math.radians(angle_deg))
-            [near] = np.atleast_2d(
-                tree.query(core, predicate="dwithin", distance=most_mm + round_mm + feature_round_mm)
+        grown = [feature_core_mm(feature, math.radians(angle_deg)) for angle_deg in feature.angles_deg]
+        holes = np.array([core for core, _ in grown], dtype=np.object_)
+        apart_mm = round_mm + grown[0][1]
+        hole, near = tree.query(holes, predicate="dwithin", distance=most_mm + apart_mm)
+        webs_mm = shapely.distance(holes[hole], cores[near]) - apart_mm
+        for place, others_count in _thinnest(webs_mm, limits_mm):
+            track = int(disc.track_index[near[place]]) + 1
+            yield _Size(
+                what=f"The web between an opening on track {track} and a {feature.purpose} {feature.shape}",
+                size_mm=float(webs_mm[place]),
+                others_count=others_count,
+                at=_at(disc, (int(near[place]),), (track,)),
             )
-            for index in near.tolist():
-                size_mm = float(shapely.distance(cores[index], core)) - round_mm - feature_round_mm
-                track = int(disc.track_index[index]) + 1
-                what = f"The web between an opening on track {track} and a {feature.purpose} {feature.shape}"
-                yield _Size(what=what, size_mm=size_mm, at=_at(disc, (index,), (track,)))
+
+
+def _thinnest(webs_mm: FloatArray, limits_mm: tuple[float, ...]) -> Iterator[tuple[int, int]]:
+    """For each level that has webs, the place of the thinnest and how many others there are."""
+    for least_mm, limit_mm in pairwise((-math.inf, *limits_mm)):
+        of_level = np.flatnonzero((webs_mm >= least_mm - GRAIN_MM) & (webs_mm < limit_mm - GRAIN_MM))
+        if len(of_level):
+            yield int(of_level[np.argmin(webs_mm[of_level])]), len(of_level) - 1
 
 
 def _at(disc: Disc, openings: tuple[int, ...], tracks: tuple[int, ...]) -> Place:
@@ -172,7 +195,7 @@ def _at(disc: Disc, openings: tuple[int, ...], tracks: tuple[int, ...]) -> Place
     )
 
 
-def _cores(disc: Disc, radius_mm: np.ndarray, angle_rad: np.ndarray) -> NDArray[np.object_]:
+def _cores(disc: Disc, radius_mm: FloatArray, angle_rad: FloatArray) -> NDArray[np.object_]:
     return core_geometries(on_disc_mm(disc.pattern.core_points_mm, radius_mm, angle_rad, disc.turning.direction))
 
 

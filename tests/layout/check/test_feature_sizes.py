@@ -207,3 +207,27 @@ def test_the_thinnest_web_told_is_that_of_the_web_check(
     by_sheet = [finding.measured for finding in found_on(disc)]
 
     assert by_sheet == ([pytest.approx(np.min(by_webs), abs=1e-9)] if by_webs else [])
+
+
+def test_webs_to_two_rows_of_holes_and_between_openings_are_counted_together() -> None:
+    # Chords on 50 and 52.4 leave 0.36 mm, three times; two holes that end 0.48 mm short of track 1's openings.
+    hole = {"purpose": "drive", "shape": "hole", "radius_mm": 46.5, "width_mm": 4, "length_mm": 4}
+    rows = [hole | {"first_at_deg": 90}, hole | {"first_at_deg": 150, "purpose": "stop"}]
+    movement = movement_with({"tracks/1/radius_mm": 52.4, "disc/features": rows})
+    chords = [(track, at) for at in (10.0, 20.0, 30.0) for track in (1, 2)]
+
+    [finding] = found_on(disc_of(movement, chords, cutter_ruling(web=[0.1, 0.1, 1.0])))
+
+    assert finding.measured == pytest.approx(0.36, abs=0.002)
+    assert finding.message.endswith("it asks for care. 4 more are below that.")  # 3 + 2, less the one told
+
+
+def test_a_rule_beyond_any_web_costs_no_time_and_still_tells_the_thinnest() -> None:
+    thick = movement_with({"disc/thickness_mm": 2000})
+
+    findings = found_on(disc_of(thick, [(1, 10.0), (1, 11.0), (3, 20.0)], cutter_ruling(web=[20.0, 20.0, 20.0])))
+
+    [finding] = [finding for finding in findings if finding.message.startswith("The web")]
+    # two working edges of track 1 are 2 · 50 · sin 3° = 5.23 mm apart; more than 50 mm away nothing is looked for
+    assert 0 < (finding.measured or 0) < 5.24
+    assert "more are" not in finding.message
