@@ -14,7 +14,7 @@ RECORD = "RECORD - NOT FOR CUTTING"
 # Characters of a title on the disc: a longer one is hard to read at a glance; what does not fit is tried shorter.
 MOST_LETTERS = (32, 24, 16)
 # The labels from the top line to the lowest.
-_AS_READ = ("title", "part", "movement", "side", "burr", "order", "fingerprint")
+_AS_READ = ("title", "part", "movement", "side", "burr", "kerf", "order", "fingerprint")
 MOST_COMMENT = 250  # characters; DXF reference: strings of releases before 2000 end at 255 bytes
 
 
@@ -82,8 +82,8 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
 def inscriptions(disc: Disc, words: Words) -> tuple[Inscription, ...]:
     """The lines to engrave, the ones that must stay longest first; only the warnings where the cutter has no labels.
 
-    Warnings, side, disc of a set, movement, order, burr; fingerprint and title come last. A title that is mostly lost
-    in ASCII is left out; so is one of blanks.
+    Warnings, side, a kerf that is compensated, disc of a set, movement, order, burr; fingerprint and title come
+    last. A title that is mostly lost in ASCII is left out; so is one of blanks.
     """
     warnings = (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
     lines = [Inscription(forms=(text,), row=row, is_warning=True) for row, text in enumerate(warnings)]
@@ -98,6 +98,7 @@ def _labels(disc: Disc, words: Words, *, below: int) -> list[Inscription]:
     named = _shortened(plain_ascii(f"{movement.id} rev {movement.revision}"), MOST_LETTERS[0])
     forms = {
         "side": (_side(disc.cutter).upper(),),
+        "kerf": (f"KERF COMPENSATED {disc.cutter.kerf_mm:g}",) if disc.cutter.kerf_compensated else (),
         "part": (words.part.upper(),) if words.part else (),
         "movement": (named,),
         # Never shortened: part of a number is another number.

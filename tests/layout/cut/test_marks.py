@@ -224,7 +224,7 @@ def test_the_head_says_how_far_a_fold_is_bent() -> None:
     assert not any(line.startswith("folds") for line in (*unknown.comments, *slots.comments))
 
 
-def test_the_head_says_whether_the_kerf_is_added_so_that_nobody_adds_it_twice() -> None:
+def test_head_and_label_say_whether_the_kerf_is_added_so_that_nobody_adds_it_twice() -> None:
     added = "outlines are the beam's path, compensated for a kerf of 0.12 mm already; add none"
     finished = "outlines are finished edges; kerf is not added"
 
@@ -235,9 +235,11 @@ def test_the_head_says_whether_the_kerf_is_added_so_that_nobody_adds_it_twice() 
     for drawing in (plain.disc, plain.record):
         assert finished in drawing.comments
         assert added not in drawing.comments
+        assert not any("KERF" in text for text in texts(drawing))
     for drawing in (compensated.disc, compensated.record):
         assert added in drawing.comments
         assert finished not in drawing.comments
+        assert "KERF COMPENSATED 0.12" in texts(drawing)
 
 
 def test_the_head_tells_of_open_slits_only_where_there_are_any() -> None:
