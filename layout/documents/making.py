@@ -111,6 +111,7 @@ class Press(Part):
 
     capacity_n: Positive | None = None
     stripping_share: Annotated[float, Field(ge=0, le=1)] = 0.2
+    metric_word: Literal["G71", "G21"] = "G71"
     strike_word: Word = "M20"
     change_word: Word = "T{tool} M6"
     turns_one_way: bool = True

@@ -39,8 +39,8 @@ def write_press_program(plan: CutPlan, disc: Disc) -> bytes:
     with the press's `change_word`. Its `{tool}` becomes a number, since a T word holds digits alone: the
     tool's place in the cutter's `tools`, counted from 1. A comment beside it gives the tool's name. Where
     no tool fits (an error overruled), the program stops there with M0 instead. The two words are the
-    shop's own; all others are N, G0, G21 (millimetres; common practice, ISO 6983-1 itself has G71), G90,
-    M0 and M30.
+    shop's own. `metric_word` says millimetres: G71 by ISO 6983-1 (from memory), G21 on many controls (common
+    practice). All others are N, G0, G90, M0 and M30.
 
     The tool stays square to the slide. The drawing's pattern is square to the radius through the working
     edge, so a hit is turned against the drawing by the angle between the two: asin of `edge_ahead_mm` over
@@ -110,7 +110,7 @@ def _most_turned_deg(plan: CutPlan, disc: Disc) -> float:
 
 def _blocks(plan: CutPlan, disc: Disc) -> Iterator[str]:
     press = disc.cutter.press or Press()
-    yield "G21 G90"
+    yield f"{press.metric_word} G90"
     if len(plan.order):
         yield _tool_taken_up(plan, disc, press)
     sign = _forward_sign(disc)

@@ -5,7 +5,7 @@ what a shop's press says of its strike word, not from the writer:
 
 - a program stands between two lines of %; what stands before the first is no part of it;
 - a block is one line: words of a letter and a number, N first; what is in brackets is for people;
-- G0 moves at once to the words X and C of its block, absolute after G90; G21 says millimetres;
+- G0 moves at once to the words X and C of its block, absolute after G90; G71 (ISO 6983-1) or G21 says millimetres;
 - T chooses a tool, M6 takes it up; M0 stops for a person; M30 ends the program;
 - the tool strikes when the block with the press's strike word is done.
 
@@ -16,7 +16,7 @@ import re
 from dataclasses import dataclass, field
 
 _COMMENT = re.compile(r"\([^()%:]*\)")
-KNOWN = frozenset({"G0", "G21", "G90", "M0", "M6", "M30"})
+KNOWN = frozenset({"G0", "G21", "G71", "G90", "M0", "M6", "M30"})
 _WORD = re.compile(r"([A-Z])([+-]?\d+\.?\d*|[+-]?\.\d+)")
 
 
@@ -91,7 +91,7 @@ class DryPress:
             elif letter + digits not in KNOWN:
                 raise Alarm(f"does not know {letter}{digits} in {line!r}")
         said = {letter + digits for letter, digits in codes}
-        self._millimetres |= "G21" in said
+        self._millimetres |= bool({"G21", "G71"} & set(said))
         self._absolute |= "G90" in said
         self.stops += "M0" in said
         self._ended |= "M30" in said
@@ -104,7 +104,7 @@ class DryPress:
 
     def _move(self, moves: dict[str, float], *, at_once: bool) -> None:
         if not at_once or not (self._millimetres and self._absolute):
-            raise Alarm("a move without G0, G21 and G90 before it")
+            raise Alarm("a move without G0, millimetres and G90 before it")
         self.slide_mm = moves.get("X", self.slide_mm)
         turn_deg = moves.get("C", self.table_deg) - self.table_deg
         self.greatest_turn_deg = max(self.greatest_turn_deg, abs(turn_deg)) if self.strikes else 0.0

@@ -202,7 +202,7 @@ def test_a_program_word_by_word() -> None:
         "(CAUTION, WEAR EYE PROTECTION, SLUGS FLY)",
         "(CAUTION, FIRST RUN IT DRY, WITHOUT A BLANK, STROKE SWITCHED)",
         "(OFF)",
-        "N1 G21 G90",
+        "N1 G71 G90",
         "N2 T2 M6 (TOOL L11)",
         "N3 G0 X45.0071 C359.9815",
         "N4 G0 X45.0071 C358.9815 (HIT 1)",
@@ -268,7 +268,7 @@ def test_a_disc_without_projections_ends_at_once() -> None:
     program = write_press_program(planned(disc), disc)
 
     assert dry_run(program) == []
-    assert program.decode().splitlines()[-3:] == ["N1 G21 G90", "N2 M30", "%"]
+    assert program.decode().splitlines()[-3:] == ["N1 G71 G90", "N2 M30", "%"]
 
 
 def test_a_laser_has_no_press_program() -> None:
@@ -330,7 +330,7 @@ def test_the_dry_run_sees_a_place_that_is_off(program: bytes) -> None:
     ("pattern", "by", "alarm"),
     [
         (r"^N\d+ M30\n", "", "does not end"),
-        (r"^N1 G21 G90\n", "", "without G0, G21 and G90"),
+        (r"^N1 G71 G90\n", "", "without G0, millimetres and G90"),
         (r" M6", "", "without a tool"),
         (r"G0", "G1", "does not know G1"),
         (r"\(HIT 1\)", "(HIT 1", "cannot read"),
@@ -342,3 +342,13 @@ def test_the_dry_run_sees_a_place_that_is_off(program: bytes) -> None:
 def test_the_dry_run_stops_at_what_is_no_program(program: bytes, pattern: str, by: str, alarm: str) -> None:
     with pytest.raises(Alarm, match=alarm):
         dry_run(changed(program, pattern, by))
+
+
+def test_a_control_that_takes_g21_for_millimetres_gets_it() -> None:
+    disc = disc_of(MOSSBROOK, cutter_with({"press/metric_word": "G21"}, PRESS), [(1, 0.0)])
+
+    program = write_press_program(planned(disc), disc)
+
+    assert len(dry_run(program)) == 1
+    assert b"N1 G21 G90" in program
+    assert b"G71" not in program
