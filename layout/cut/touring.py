@@ -194,7 +194,7 @@ class _Trip:
         """The stops that may come to stand beside a: the near ones, then all where b must not stay there."""
         if b not in self.apart[a]:
             return self.near_mm[a]
-        others = ((c, self.cost_mm(a, c)) for c in range(len(self.order)) if c != a)
+        others = ((c, self.plain_mm(a, c)) for c in range(len(self.order)) if c != a and c not in self.apart[a])
         return chain(self.near_mm[a], others)
 
     def _move_a_few(self, a: int) -> tuple[int, ...]:

@@ -131,6 +131,14 @@ def test_a_bridge_that_is_lost_is_found() -> None:
     assert codes.count(Code.UNKNOWN_CUT) == 3
 
 
+def test_a_bridge_too_many_is_found() -> None:
+    more = cutter_with({"bridges": {**BRIDGES, "count": 5}})
+
+    reading = read_back(bytes_of(disc_document(disc_of(PLAIN, [(1, 1.0)], more))), PLAIN, HELD)
+
+    assert Code.BLANK_DIFFERS in [finding.code for finding in reading.findings]
+
+
 def test_bridges_of_another_width_are_found() -> None:
     wider = cutter_with({"bridges": {"count": 4, "width_mm": 1.0}})
 

@@ -156,6 +156,19 @@ def test_every_stop_is_visited_once_and_forbidden_pairs_are_kept_apart_where_the
     assert [step for step in pairwise(order.tolist()) if tuple(sorted(step)) in forbidden] == []
 
 
+@pytest.mark.parametrize("seed", range(5))
+def test_a_crowd_in_which_none_may_follow_another_is_visited_from_outside_each_time(seed: int) -> None:
+    # Thirty stops within 1 mm, every pair of them kept apart, and forty along a line 100 mm off and farther: each step
+    # out of the crowd must be to the line, for most of them to a stop that is none of the nearest.
+    line = np.column_stack([np.linspace(100, 400, 40), np.zeros(40)])
+    stops_mm = np.concatenate([np.random.default_rng(seed).uniform(0, 1, (30, 2)), line])
+    pairs = [(a, b) for a in range(30) for b in range(a + 1, 30)]
+
+    order = short_round_trip(stops_mm, np.array(pairs))
+
+    assert [step for step in pairwise(order.tolist()) if max(step) < 30] == []
+
+
 def test_where_it_cannot_be_helped_a_forbidden_pair_follows_all_the_same() -> None:
     assert sorted(short_round_trip(np.array([(1.0, 0.0), (2.0, 0.0)]), np.array([(0, 1)])).tolist()) == [0, 1]
 
