@@ -30,7 +30,8 @@ Size = Literal["width_mm", "depth_mm", "length_mm"]
 def rows_of(movement: Movement, cutter: Cutter) -> tuple[Row, ...]:
     """The rows of the piece, the outermost first: its ladders, what it is, and what its line says.
 
-    The longest ladders stand outermost, where a small sector holds most.
+    The longest ladders stand outermost, where a small sector holds most. A ladder of which no step can be
+    cut has no rungs.
 
     A laser that folds gets kerf, tab width, depth and web; one that cuts slots kerf, slot width, slot length
     and web; a press the web of the tool that makes this movement's projections, since its tool sets
@@ -57,7 +58,7 @@ def rows_of(movement: Movement, cutter: Cutter) -> tuple[Row, ...]:
                 _Sized(name="depth", size="depth_mm", how=depth, corrects=("cutter", "/fold/inside_radius_mm")),
             ),
         ]
-    return (web, _kerf(cutter), *(row for row in sizes if row.rungs), *said)
+    return (web, _kerf(cutter), *sizes, *said)
 
 
 def track_ladder(movement: Movement, tracks: Iterable[int]) -> Ladder:
@@ -101,9 +102,9 @@ def tool_ladders(movement: Movement, cutter: Cutter, tracks: Iterable[int]) -> t
 
 
 def _kerf(cutter: Cutter) -> Row:
-    widths_mm = [factor * cutter.min_slot_mm for factor in KERF_FACTORS]
+    widths_mm = [round(factor * cutter.min_slot_mm, 6) for factor in KERF_FACTORS]
     widths_mm = [width for width in widths_mm if width > cutter.kerf_mm]  # no slot is narrower than its own cut
-    length_mm = max(KERF_SLOT_MM, 2 * max(widths_mm))
+    length_mm = max(KERF_SLOT_MM, 2 * max(widths_mm, default=0.0))
     return _row(
         Ladder(
             name="kerf",

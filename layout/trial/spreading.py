@@ -25,7 +25,7 @@ GRAIN_MM = 1e-6  # mm; a nanometre, what rounding may leave
 LIFT_MM = (
     0.5  # mm of travel over which a tooth is lifted, where not stated; the shipped movement that states it has 0.35
 )
-MOST_SECTOR_RAD = math.radians(300)  # a wider piece is a disc
+MOST_SECTOR_RAD = math.radians(300)  # ladders stop here: a wider piece is a disc
 # A narrower sector bends where it leaves the hub, and is then not flat under the star wheels. Our own choice.
 LEAST_SECTOR_RAD = math.radians(45)
 

@@ -36,6 +36,7 @@ from layout.trial.spreading import Ground, PlacedRung, Spread, spread
 # times the thickness (common practice: 1.5 is a comfortable web); the larger counts.
 WEB_FACTOR = 1.5
 SIDE_WEBS = 2.0  # such webs to the sector's sides and rim: they are handled
+WIDEST_SECTOR_RAD = math.radians(340)  # so that hub and sector keep two sides
 MIDDLES = 360  # places tried for the sector's middle, the disc's angle 0 first
 
 
@@ -47,19 +48,22 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
     disc's own pattern, and beside them ladders of steps. What the sector cannot have is told as not tried.
 
     Raises:
-        DocumentError: The cutter cannot make the movement's projections, so there is nothing to try.
+        DocumentError: The cutter cannot make the movement's projections, so there is nothing to try; or the tracks
+            are so near the centre that their projections fill a disc.
     """
     _check_it_can_be_made(movement, cutter)
     pattern = pattern_of(movement, cutter)
     mirror = -1 if cutter.drawn_from == "star-side" else 1
     turn = mirror * (1 if movement.turns == "clockwise" else -1)
-    rows = rows_of(movement, cutter)
+    rows = [row for row in rows_of(movement, cutter) if row.rungs]
+    impossible = [row.ladder.name for row in rows_of(movement, cutter) if row.ladder and not row.rungs]
     near_mm = float(pattern.core_points_mm[:, 1].min()) - pattern.core_round_mm
     within_mm = movement.tracks[0].radius_mm + near_mm
     features = hub_features(movement, within_mm)
     tracks, off_disc = _tracks_on_the_metal(movement, pattern, features, cutter.min_web_mm)
     ground = _ground(movement, cutter, features, within_mm)
     places = spread(movement, pattern, tracks, rows, ground)
+    _check_there_is_room(movement, places)
     sector, absent = _sector(movement, features, ground, places.whole_rad, mirror)
     drawn = _Drawn(sector=sector, turn=turn, whole_rad=places.whole_rad)
     hits_mm, cut = _cut(drawn, movement, pattern, tracks, places)
@@ -80,7 +84,7 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
         web_mm=places.web_mm,
         ladders=_told(movement, cutter, rows, places, tracks),
         hits=None if hits_mm is None else Hits(tool=pattern.tool, at_mm=hits_mm),
-        not_tried=(*off_disc, *_rows_left_out(places), *absent),
+        not_tried=(*off_disc, *_cannot_be_cut(impossible), *_rows_left_out(places), *absent),
         cautions=wording.cautions(movement, cutter),
     )
 
@@ -99,6 +103,15 @@ def _check_it_can_be_made(movement: Movement, cutter: Cutter) -> None:
         message = f"no tool of {cutter.id} makes the projections of {movement.id}; it has {tools}; add one to tools"
     if message:
         raise DocumentError(document="cutter", problems=(Problem(pointer="", message=message),))
+
+
+def _check_there_is_room(movement: Movement, places: Spread) -> None:
+    if places.whole_rad > WIDEST_SECTOR_RAD:
+        message = (
+            f"{len(movement.tracks)} tracks from {movement.tracks[0].radius_mm:g} mm on find no room on a sector of "
+            f"{math.degrees(WIDEST_SECTOR_RAD):g} degrees; a trial piece needs tracks farther from the centre"
+        )
+        raise DocumentError(document="movement", problems=(Problem(pointer="/tracks", message=message),))
 
 
 def _ground(movement: Movement, cutter: Cutter, features: tuple[Feature, ...], within_mm: float) -> Ground:
@@ -252,6 +265,11 @@ def _told(
     if not numbered:
         return tuple(ladders)
     return (*tool_ladders(movement, cutter, numbered), *ladders, track_ladder(movement, numbered))
+
+
+def _cannot_be_cut(names: Sequence[str]) -> tuple[NotTried, ...]:
+    why = "no step of it can be cut: the kerf is wider, or nothing is left of a tab beside its bend"
+    return tuple(NotTried(what=f"ladder {name}", why=why) for name in names)
 
 
 def _rows_left_out(places: Spread) -> tuple[NotTried, ...]:

@@ -279,6 +279,28 @@ def test_a_ladder_without_room_is_told_and_left_out() -> None:
     assert not any(mark.startswith("K") for mark in read.letters)
 
 
+def test_a_ladder_of_which_no_step_can_be_cut_is_told() -> None:
+    # The widest step is 3 times 0.4 mm, no wider than this kerf.
+    piece = trial_piece(FERNHOLLOW, cutter_with({"kerf_mm": 1.2}))
+
+    assert [(left.what, left.why) for left in piece.not_tried] == [
+        ("ladder kerf", "no step of it can be cut: the kerf is wider, or nothing is left of a tab beside its bend")
+    ]
+
+
+def test_tracks_about_the_centre_are_refused() -> None:
+    tracks = [{"track": 1, "radius_mm": 2.0}, {"track": 2, "radius_mm": 5.0}]
+    teeth = [{"tooth": number, "track": number, "pitch": "C5"} for number in (1, 2)]
+    movement = movement_with({"disc/centre_hole_mm": 0.1, "tracks": tracks, "teeth": teeth})
+
+    with pytest.raises(DocumentError, match="2 tracks from 2 mm on find no room on a sector of 340 degrees") as refused:
+        trial_piece(movement, LASER)
+
+    assert [(refused.value.document, problem.pointer) for problem in refused.value.problems] == [
+        ("movement", "/tracks")
+    ]
+
+
 def test_no_ladder_stands_in_a_ring_that_must_stay_whole() -> None:
     ring = {"from_radius_mm": 104, "to_radius_mm": 116, "why": "the brake's roller runs there"}
     movement = movement_with({"keep_out": [ring]})
