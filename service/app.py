@@ -15,6 +15,7 @@ from service.api.failures import answer_failures
 from service.api.layout_cache import LayoutCache
 from service.api.layouts import layout_routes
 from service.api.problem_pages import problem_pages
+from service.api.sheets import sheet_routes
 from service.api.trial_pieces import trial_piece_routes
 from service.planner import AnyPlanner
 from service.settings import ServiceSettings, settings_from
@@ -40,6 +41,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
     desk = LayoutDesk(planner, LayoutCache(settings))
     app.register_blueprint(layout_routes(desk, settings.limits))
     app.register_blueprint(trial_piece_routes(settings.limits))
+    app.register_blueprint(sheet_routes(settings.limits))
     app.register_blueprint(catalogue_routes())
     app.register_blueprint(about_routes(settings.limits))
     app.register_blueprint(problem_pages())

@@ -26,6 +26,7 @@ class SheetLimits:
         2000, "discs", "most discs of all kinds together; a full sheet of them takes a quarter of a minute"
     )
     outline_corners: int = limit(500, "corners", "most corners of an outline with its openings: a much cut remnant")
+    job_corners: int = limit(4000, "corners", "most corners of all outlines of a job: a rack of remnants, each with 80")
     clamps: int = limit(20, "zones", "most clamp zones of a sheet: more than a bed has clamps")
     longest_mm: int = limit(6000, "mm", "farthest a sheet may reach: above the largest plates that are traded")
 
@@ -149,6 +150,11 @@ class SheetJob(Part):
     @classmethod
     def _stock_is_bounded(cls, stock: tuple[Stock, ...]) -> tuple[Stock, ...]:
         _check_listed([(each.id, each.quantity) for each in stock], "sheets", LIMITS.sheets)
+        corners = sum(len(each.outline_mm or ()) + sum(map(len, each.openings_mm)) for each in stock)
+        if corners > LIMITS.job_corners:
+            raise ValueError(
+                f"the outlines have {corners} corners, {LIMITS.job_corners} are allowed; make several jobs of it"
+            )
         return stock
 
     @field_validator("discs")

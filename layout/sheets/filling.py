@@ -11,6 +11,7 @@ from layout.sheets.rows import rows_on
 
 # Budgets are counts, so that the same job gives the same sheets on a slow machine; for times see bench_sheets.
 _LAID_IN_ALL = 5000  # discs laid into corners over all tries on one sheet; about a second and a half
+_WALLS_LIKE_A_DISC = 10  # walls; to begin a size among so many takes as long as a disc laid
 _ROWS_FILLED_UP = 3  # row patterns whose rest is laid with discs; the others hold fewer
 _MOST_GROWN = 60  # discs; with more, rows are near the best and a start takes long
 _GROWN_ON_SHEET = 1600  # discs of all starts on one sheet; one to two seconds
@@ -58,10 +59,11 @@ def filled(room: Room, wanted: Wanted, starts: Starts) -> Placed:
     rules: tuple[Rule, ...] = (*TOWARDS, None)
     for rows in in_rows[:_ROWS_FILLED_UP]:
         tries.append(laid_in_corners(ground, TOWARDS[0], rows))
-    laid = 0
+    laid = 0.0
+    begun = len(wanted.radius_mm) * len(room.start_mm) / _WALLS_LIKE_A_DISC
     for rule in rules:
         tries.append(laid_in_corners(ground, rule))
-        laid += max(len(tries[-1].size), 1)
+        laid += len(tries[-1].size) + begun
         if laid + min(expected, len(tries[-1].size)) > _LAID_IN_ALL:
             break
     best = max(tries, key=lambda each: worth_of(wanted, each))

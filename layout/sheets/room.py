@@ -6,7 +6,7 @@ import numpy as np
 import shapely
 from shapely.geometry.polygon import orient
 
-from layout.documents.sheets import Stock
+from layout.documents.sheets import LEAST_CORNERS, Stock
 from layout.mechanics.arrays import FloatArray, IntArray
 
 GRAIN_MM = 1e-6  # mm; a nanometre: distances that keep their rule to this keep it
@@ -23,6 +23,7 @@ class Room:
         end_mm: Shape (m, 2). Where it ends.
         keep_mm: Shape (m,). What a rim keeps from it: the margin at edges, 0 at clamp zones.
         before: Shape (m,). Index of the wall that ends where it begins.
+        lines: The same walls by what a rim keeps from them, made ready to ask for distances.
     """
 
     inside: shapely.MultiPolygon
@@ -30,6 +31,7 @@ class Room:
     end_mm: FloatArray
     keep_mm: FloatArray
     before: IntArray
+    lines: tuple[tuple[float, shapely.MultiLineString], ...]
 
 
 def room_of(stock: Stock, margin_mm: float) -> Room:
@@ -47,19 +49,26 @@ def room_of(stock: Stock, margin_mm: float) -> Room:
     for zone in getattr(clamps, "geoms", [clamps] if stock.clamps else []):
         around = orient(zone, sign=-1.0)  # clockwise, so that the free side is to the left
         rings += [(ring, 0.0) for ring in (around.exterior, *around.interiors)]
-    corners = [_corners_apart(shapely.get_coordinates(ring)[:-1]) for ring, _ in rings]
+    cleaned = [(_corners_apart(shapely.get_coordinates(ring)[:-1]), keep) for ring, keep in rings]
+    rings_mm = [(at, keep) for at, keep in cleaned if len(at) >= LEAST_CORNERS]  # fewer: a chink between two zones
+    corners = [at for at, _ in rings_mm]
     counts = np.array([len(at) for at in corners])
     firsts = np.cumsum(counts) - counts
     free = sheet.difference(clamps)
     inside = shapely.MultiPolygon(
         [part for part in getattr(free, "geoms", [free]) if isinstance(part, shapely.Polygon)]
     )
-    shapely.prepare(inside)
+    lines = [
+        (keep, shapely.MultiLineString([np.vstack([at, at[:1]]) for at, kept in rings_mm if kept == keep]))
+        for keep in dict.fromkeys(keep for _, keep in rings_mm)
+    ]
+    shapely.prepare([inside, *(each for _, each in lines)])
     return Room(
         inside=inside,
         start_mm=np.concatenate(corners),
         end_mm=np.concatenate([np.roll(at, -1, axis=0) for at in corners]),
-        keep_mm=np.concatenate([np.full(len(at), keep) for at, (_, keep) in zip(corners, rings, strict=True)]),
+        keep_mm=np.concatenate([np.full(len(at), keep) for at, keep in rings_mm]),
+        lines=tuple(lines),
         before=np.concatenate(
             [first + np.roll(np.arange(count), 1) for first, count in zip(firsts, counts, strict=True)]
         ),
@@ -96,4 +105,7 @@ def clearance_mm(room: Room, points_mm: FloatArray) -> FloatArray:
 
 def fitting(room: Room, points_mm: FloatArray, radius_mm: float) -> FloatArray:
     """Those of the points where a disc of this radius keeps clear of the walls."""
-    return points_mm[clearance_mm(room, points_mm) >= radius_mm - GRAIN_MM]
+    fits = shapely.contains_xy(room.inside, points_mm)
+    for keep_mm, lines in room.lines:
+        fits &= ~shapely.dwithin(lines, shapely.points(points_mm), keep_mm + radius_mm - GRAIN_MM)
+    return points_mm[fits]

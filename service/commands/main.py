@@ -12,7 +12,7 @@ from typing import NoReturn
 from layout import walk
 from layout.errors import DocumentError, LayoutError
 from layout.version import ENGINE_VERSION
-from service.commands import check, cutter, cutters, movement, movements, plan, serve, trial_piece
+from service.commands import check, cutter, cutters, movement, movements, plan, serve, sheets, trial_piece
 from service.commands.arguments import OneLineParser, Tools, add_command
 from service.commands.errors import BAD_INPUT, INTERRUPTED, PIPE_CLOSED, CommandError
 from service.limits import Limits
@@ -28,6 +28,7 @@ EXAMPLE = """example:
 COMMANDS: dict[str, ModuleType] = {
     "plan": plan,
     "check": check,
+    "sheets": sheets,
     "trial-piece": trial_piece,
     "movements": movements,
     "movement": movement,

@@ -114,6 +114,16 @@ def test_too_many_discs_or_sheets_are_refused_with_what_is_allowed() -> None:
     ]
 
 
+def test_too_many_corners_of_all_outlines_are_refused() -> None:
+    ring = [[x / 10, 0] for x in range(450)] + [[0, 100]]
+
+    listed = [{"id": f"rest-{n}", "outline_mm": ring} for n in range(9)]
+
+    assert faults(stock=listed) == [
+        ("/stock", "the outlines have 4059 corners, 4000 are allowed; make several jobs of it")  # 9 × 451
+    ]
+
+
 def test_an_id_given_twice_is_refused() -> None:
     both = [{"id": "a", "diameter_mm": 9, "quantity": 1}, {"id": "a", "diameter_mm": 8, "quantity": 1}]
 
