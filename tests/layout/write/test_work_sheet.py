@@ -126,15 +126,15 @@ ALL_DISCS = EXAMPLE_DISCS | {
 
 
 @pytest.mark.parametrize("name", ALL_DISCS)
-def test_a_work_sheet_is_two_upright_a4_pages(name: str, tmp_path: Path) -> None:
-    (tmp_path / "sheet.pdf").write_bytes(sheet_of(ALL_DISCS[name]))
+def test_a_work_sheet_is_two_upright_a4_pages(name: str) -> None:
+    pdf = sheet_of(ALL_DISCS[name])
 
-    pages = pypdf.PdfReader(tmp_path / "sheet.pdf").pages
+    pages = pypdf.PdfReader(io.BytesIO(pdf)).pages
 
     # ISO 216: A4 is 210 by 297 mm; a point is 1/72 inch.
     sizes_mm = [(float(page.mediabox.width) / 72 * 25.4, float(page.mediabox.height) / 72 * 25.4) for page in pages]
     assert sizes_mm == [pytest.approx((210, 297), abs=0.01)] * 2
-    assert [f"{number} / 2" in text for number, text in enumerate(pages_of(sheet_of(ALL_DISCS[name])), 1)] == [True] * 2
+    assert [f"{number} / 2" in text for number, text in enumerate(pages_of(pdf), 1)] == [True] * 2
 
 
 @pytest.mark.parametrize("not_good", [None, LONG * 3])
@@ -142,11 +142,27 @@ def test_a_work_sheet_is_two_upright_a4_pages(name: str, tmp_path: Path) -> None
 def test_no_word_stands_outside_the_frame(name: str, not_good: str | None) -> None:
     pdf = sheet_of(ALL_DISCS[name], title="W" * 80, findings=findings_of(40), not_good=not_good)
 
-    boxes = np.array(list(text_boxes_mm(pdf)))
+    boxes = np.array([box for page in (0, 1) for box in text_boxes_mm(pdf, page)])
 
     assert len(boxes) > 100
     assert (boxes[:, :2] >= np.array(FRAME_MM[:2]) - GRAIN_MM).all()
     assert (boxes[:, 2:] <= np.array(FRAME_MM[2:]) + GRAIN_MM).all()
+
+
+@pytest.mark.parametrize("disc", [ONE_FOLD, THREE_LANCES, THREE_SLOTS, WORDY, MOST_TRACKS])
+def test_no_words_are_written_over_others(disc: Disc) -> None:
+    for count in (0, 3, 200):
+        pdf = sheet_of(disc, title="W" * 80, findings=findings_of(count))
+        for page in (0, 1):
+            boxes = np.array(list(text_boxes_mm(pdf, page)))
+            boxes = boxes[boxes[:, 3] - boxes[:, 1] < 100]  # without the warning across the page
+
+            deep_mm = np.minimum(boxes[:, None, 2:], boxes[None, :, 2:]) - np.maximum(
+                boxes[:, None, :2], boxes[None, :, :2]
+            )
+            over = np.triu((deep_mm > 0.3).all(axis=-1), k=1)
+
+            assert np.argwhere(over).tolist() == []
 
 
 @pytest.mark.parametrize("page", [0, 1])
@@ -296,7 +312,8 @@ def test_a_disc_with_an_error_says_on_both_pages_that_it_is_not_good_to_cut() ->
 
 
 def test_the_warning_runs_across_the_page_in_large_letters() -> None:
-    boxes = np.array(list(text_boxes_mm(sheet_of(ONE_FOLD, findings=(THIN_WEB,)))))
+    pdf = sheet_of(ONE_FOLD, findings=(THIN_WEB,))
+    boxes = np.array([box for page in (0, 1) for box in text_boxes_mm(pdf, page)])
 
     wide_mm, high_mm = (boxes[:, 2:] - boxes[:, :2]).T
 

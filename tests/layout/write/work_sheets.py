@@ -47,6 +47,7 @@ def set_sheet_of(disc: Disc, number: int, count: int) -> bytes:
     return write_work_sheet(replace(plan_of(disc), part=laid_out.part), laid_out, None)
 
 
+@lru_cache(maxsize=8)
 def pages_of(pdf: bytes) -> list[str]:
     """The words of each page, line by line."""
     return [page.extract_text() for page in pypdf.PdfReader(io.BytesIO(pdf)).pages]
@@ -57,13 +58,12 @@ def words_of(pdf: bytes) -> str:
     return " ".join(" ".join(pages_of(pdf)).split())
 
 
-def text_boxes_mm(pdf: bytes) -> Iterator[tuple[float, float, float, float]]:
-    """Left, bottom, right and top of every piece of text."""
-    for page in pypdfium2.PdfDocument(pdf):
-        text = page.get_textpage()
-        for index in range(text.count_rects()):
-            left, bottom, right, top = (edge / POINTS_PER_MM for edge in text.get_rect(index))
-            yield left, bottom, right, top
+def text_boxes_mm(pdf: bytes, page: int) -> Iterator[tuple[float, float, float, float]]:
+    """Left, bottom, right and top of every piece of text on a page, from 0."""
+    text = pypdfium2.PdfDocument(pdf)[page].get_textpage()
+    for index in range(text.count_rects()):
+        left, bottom, right, top = (edge / POINTS_PER_MM for edge in text.get_rect(index))
+        yield left, bottom, right, top
 
 
 def ink_of(pdf: bytes, page: int) -> NDArray[np.bool_]:
