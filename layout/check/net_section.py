@@ -1,4 +1,4 @@
-"""Checks of the metal left in the band of the openings, along a ray and along a ring."""
+"""Checks of the metal left in the band of the tracks, along a ray and along a ring."""
 
 import math
 

@@ -30,11 +30,11 @@ _AT_ONCE = 256  # stretches looked at in one go: bounds the memory
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class MetalLeft:
-    """The least metal left in the band of the openings.
+    """The least metal left in the band of the tracks.
 
     Attributes:
-        from_mm: Where the band begins: the innermost edge of an opening.
-        to_mm: Where it ends: the outermost edge.
+        from_mm: Where the band begins: the innermost edge that an opening on the innermost track has.
+        to_mm: Where it ends: the outermost edge of one on the outermost track. Neither depends on the tracks used.
         line_mm: The least metal left on a ray, over the band.
         line_angle_rad: Where on the disc, in [0, 2π).
         ring_mm: What is left, along it, of the ring that keeps the least share of itself.
@@ -147,7 +147,7 @@ def metal_left(
     edge_angle_rad: FloatArray,
     features: tuple[Feature, ...] = (),
 ) -> MetalLeft | None:
-    """The least metal the openings leave in their band, within LINE_GRAIN_MM and RING_GRAIN_RAD.
+    """The least metal the openings leave in the band of the tracks, within LINE_GRAIN_MM and RING_GRAIN_RAD.
 
     None where there are no openings, or where one reaches over the centre of the disc.
 
@@ -163,10 +163,10 @@ def metal_left(
         for index in np.unique(track_index).tolist()
     ]
     found = [(outline, angles_rad) for outline, angles_rad in openings if outline is not None]
-    if not found or len(found) < len(openings):
+    innermost, outermost = (_on_track(pattern, turning, index) for index in (0, len(turning.radius_mm) - 1))
+    if not found or len(found) < len(openings) or innermost is None or outermost is None:
         return None
-    reach_mm = [outline.reach_mm for outline, _ in found]
-    from_mm, to_mm = min(low for low, _ in reach_mm), max(high for _, high in reach_mm)
+    from_mm, to_mm = innermost.reach_mm[0], outermost.reach_mm[1]
     for feature in features:
         outline = _of_feature(feature)
         if outline is not None and outline.reach_mm[0] < to_mm and outline.reach_mm[1] > from_mm:

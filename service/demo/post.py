@@ -1,5 +1,7 @@
 """Posts the demo tune to a running service, once for each movement it ships, and keeps what comes back.
 
+A trial piece for the first movement and sheets of discs for all come after.
+
 Run as `python -m service.demo.post --address http://127.0.0.1:8000 --out demo`. It knows the service only by
 what it promises over HTTP, as any other client would.
 """
@@ -8,8 +10,6 @@ import argparse
 import hashlib
 import json
 import sys
-import urllib.error
-import urllib.request
 from collections import Counter
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
@@ -20,22 +20,12 @@ from typing import Any
 
 import mido
 
-ANSWER_WITHIN_S = 120.0  # as long as service/up lets a worker compute
+from service.demo.asking import DemoFailedError, Upload, fetch
+from service.demo.workshop import post_sheets, post_trial_piece
+
 CUTTING_FILES = ("disc.dxf", "hits.csv", "press.nc")  # what the service keeps back while an error stands
 OUTSIDE = "outside-passage"  # the reason of notes the demo did not ask for
 INTERRUPTED = 130  # common practice: 128 + the number of SIGINT
-
-
-class DemoFailedError(Exception):
-    """The demo could not be finished; its text is one line fit to show."""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Upload:
-    """What is posted: the bytes of the request and the media type they have."""
-
-    body: bytes
-    media_type: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -101,38 +91,6 @@ def passage_of(tune: Tune, to_s: float) -> Upload:
     return Upload(body=b"\r\n".join(lines), media_type=f"multipart/form-data; boundary={boundary}")
 
 
-def fetch(url: str, upload: Upload | None = None) -> bytes:
-    """The body that a URL answers with: to a GET, or to a POST where something is uploaded.
-
-    Raises:
-        DemoFailedError: The service cannot be reached, or answers with an error.
-    """
-    request = urllib.request.Request(url)
-    if upload is not None:
-        request.data = upload.body
-        request.add_header("Content-Type", upload.media_type)
-    # No proxy that the surroundings name: the service is on this machine.
-    opener = urllib.request.build_opener(urllib.request.ProxyHandler({}))
-    try:
-        with opener.open(request, timeout=ANSWER_WITHIN_S) as answer:
-            return bytes(answer.read())
-    except urllib.error.HTTPError as refusal:
-        with refusal:
-            said = f"{refusal.code}, {_detail(refusal.read())}"
-        raise DemoFailedError(f"{request.get_method()} {url} was refused: {said}") from refusal
-    except OSError as failure:
-        raise DemoFailedError(f"{url} does not answer: {failure}") from failure
-
-
-def _detail(body: bytes) -> str:
-    """What problem details (RFC 9457) say, on one line; the start of the text where it is something else."""
-    try:
-        problem = json.loads(body)
-        return " ".join(str(problem.get("detail") or problem.get("title")).split())
-    except (ValueError, AttributeError):
-        return " ".join(body.decode(errors="replace").split())[:200]
-
-
 def report(layout: dict[str, Any]) -> list[str]:
     """Lines that say what a disc keeps of the tune, what it leaves out and why, and what was found."""
     kept = sum(len(projection["notes"]) for projection in layout["projections"])
@@ -190,7 +148,7 @@ def keep(files: dict[str, bytes], folder: Path) -> None:
 
 
 def post_demo(address: str, out: Path, say: Callable[[str], None]) -> None:
-    """Make the demo disc of every movement the service ships, and say what came of each.
+    """Make the demo disc of every movement the service ships, a trial piece and a job of sheets; say what came of each.
 
     Args:
         address: Where the service answers, without a slash at the end.
@@ -208,6 +166,13 @@ def post_demo(address: str, out: Path, say: Callable[[str], None]) -> None:
     for movement in movements:
         files = make_disc(address, movement["id"], tune, say)
         folder = out / movement["id"]
+        keep(files, folder)
+        say(f"  written to {folder}: {', '.join(files)}")
+    documents = [json.loads(fetch(f"{address}/v1/movements/{movement['id']}")) for movement in movements]
+    for folder, files in (
+        (out / "trial-piece", post_trial_piece(address, documents[0]["id"], say)),
+        (out / "sheets", post_sheets(address, documents, say)),
+    ):
         keep(files, folder)
         say(f"  written to {folder}: {', '.join(files)}")
 
