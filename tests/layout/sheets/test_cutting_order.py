@@ -16,12 +16,25 @@ def along(on: Sheet) -> np.ndarray:
     return np.asarray(from_end - from_end.min())
 
 
+def strips(on: Sheet) -> np.ndarray:
+    return np.asarray(np.floor(along(on) / on.strip_mm + 1e-6))
+
+
 @settings(max_examples=12, deadline=None)
 @given(jobs())
 def test_no_disc_is_cut_after_one_of_a_later_strip(job: SheetJob) -> None:
     for on in arrange_on_sheets(job).sheets:
-        strips = np.floor(along(on) / on.strip_mm + 1e-6)
-        assert (np.diff(strips) >= 0).all()
+        assert (np.diff(strips(on)) >= 0).all()
+
+
+def test_the_strips_of_a_full_sheet_are_cut_one_after_the_other() -> None:
+    clamp = {"x_mm": 0, "y_mm": 0, "width_mm": 40, "height_mm": 40}
+    plan = arrange_on_sheets(job_of([sheet(1000, 800, clamps=[clamp])], [(150, 12), (60, 110)], gap_mm=4))
+
+    found = strips(plan.sheets[0])
+    assert len(plan.sheets[0].kind) > 60
+    assert len(set(found.tolist())) > 3
+    assert (np.diff(found) >= 0).all()
 
 
 def test_cutting_begins_far_from_the_clamps() -> None:
