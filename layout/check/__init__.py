@@ -23,7 +23,7 @@ from layout.check.finding import Code, Finding, Level, Place, stands
 from layout.check.forming import bends_are_wide_enough, bends_lie_across_the_rolling
 from layout.check.kerf import nothing_closes_under_the_kerf
 from layout.check.labels import labels_are_seen
-from layout.check.leads import leads_have_room
+from layout.check.leads import bridges_have_room, leads_have_room
 from layout.check.music import WholeTune, music_fits_the_turn, something_plays
 from layout.check.net_section import metal_holds_along_rays_and_rings
 from layout.check.press import feet_stand_on_flat_metal, hits_fall_on_whole_metal, press_is_strong_enough
@@ -51,6 +51,7 @@ DISC_CHECKS: tuple[Callable[[Disc], list[Finding]], ...] = (
     holes_are_large_enough,
     nothing_closes_under_the_kerf,
     leads_have_room,
+    bridges_have_room,
     bends_are_wide_enough,
     bends_lie_across_the_rolling,
     labels_are_seen,

@@ -50,6 +50,7 @@ class Code(StrEnum):
     FOLDS_ALONG_ROLLING = "folds-along-rolling"
     KERF_CLOSES = "kerf-closes"
     LEAD_HAS_NO_ROOM = "lead-has-no-room"
+    BRIDGE_HAS_NO_ROOM = "bridge-has-no-room"
     HIT_OVER_OPENING = "hit-over-opening"
     FOOT_ON_FORMED = "foot-on-formed"
     PRESS_TOO_WEAK = "press-too-weak"

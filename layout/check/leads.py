@@ -1,10 +1,13 @@
-"""Checks that what a laser cuts has room for the leads its shop wants."""
+"""Checks that what a laser cuts has room for the leads and bridges its shop wants."""
+
+import math
 
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.cutter import Cutter
 from layout.mechanics.arrays import FloatArray
+from layout.mechanics.bridging import MOST_SHARE, arcs_of_rim_rad, gap_mm, gaps_in
 from layout.mechanics.lead import clear_of_lines_mm, fits_in_circle, pierced_inside_mm
 from layout.mechanics.obround import obround_mm
 from layout.mechanics.offset import moved_outlines
@@ -35,6 +38,31 @@ def leads_have_room(disc: Disc) -> list[Finding]:
         if not fits:
             without.append(f"{one.purpose} {one.shape} has")
     return [_no_room(cutter, what, cutter.lead_in.length_mm) for what in dict.fromkeys(without)]
+
+
+def bridges_have_room(disc: Disc) -> list[Finding]:
+    """A warning where the rim's arcs are too short for the cutter's bridges; the rim is then cut whole."""
+    bridges, rim_mm = disc.cutter.bridges, disc.movement.disc.outer_diameter_mm / 2
+    if bridges is None:
+        return []
+    width_rad = 2 * math.asin(min(gap_mm(disc.cutter, bridges) / (2 * rim_mm), 1.0))
+    if gaps_in(arcs_of_rim_rad(disc.movement), count=bridges.count, width_rad=width_rad) is not None:
+        return []
+    return [
+        Finding(
+            code=Code.BRIDGE_HAS_NO_ROOM,
+            level=Level.WARNING,
+            message=(
+                f"The rim has no room for {bridges.count} bridges of {bridges.width_mm:.3f} mm: they would take more "
+                f"than {MOST_SHARE:.0%} of an arc between its notches. None is left, and nothing holds the disc."
+            ),
+            measured=None,
+            limit=100 * MOST_SHARE,
+            unit="%",
+            at=Place(radius_mm=rim_mm),
+            remedy="State fewer or narrower bridges in the cutter document.",
+        )
+    ]
 
 
 def _fits(points_mm: FloatArray, bulges: FloatArray, cutter: Cutter) -> bool:

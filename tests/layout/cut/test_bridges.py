@@ -11,7 +11,8 @@ from ezdxf.filemanagement import read
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from layout.check.finding import Code
+from layout.check import check
+from layout.check.finding import Code, Finding
 from layout.cut import plan_cuts
 from layout.cut.plan import Circles, CutPath, Entity, Outlines
 from layout.documents import Cutter, Movement
@@ -20,7 +21,7 @@ from layout.place.disc import Disc
 from layout.read_back import read_back
 from layout.write import write_dxf
 from tests.layout.cut.test_blank import HOLE, NOTCH
-from tests.layout.examples import PLAIN, SHIPPED, cutter_with, disc_of, movement_with
+from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
 
 KERF_MM = 0.12  # of the shipped laser
@@ -152,6 +153,27 @@ def test_a_rim_without_room_for_its_bridges_stays_closed() -> None:
     [rim] = rim_of(disc_of(PLAIN, [], cutter_with({"bridges": {"count": 24, "width_mm": 20}})))
 
     assert isinstance(rim, Circles)
+
+
+def bridge_findings(cutter: Cutter, movement: Movement = PLAIN) -> list[Finding]:
+    return [found for found in check(disc_of(movement, [(1, 1.0)], cutter)) if found.code is Code.BRIDGE_HAS_NO_ROOM]
+
+
+def test_bridges_without_room_are_told() -> None:
+    [finding] = bridge_findings(cutter_with({"bridges": {"count": 24, "width_mm": 20}}))
+
+    assert finding.level == "warning"
+    assert finding.message == (
+        "The rim has no room for 24 bridges of 20.000 mm: they would take more than 50% of an arc between its notches. "
+        "None is left, and nothing holds the disc."
+    )
+    assert finding.remedy == "State fewer or narrower bridges in the cutter document."
+
+
+def test_bridges_that_have_room_are_no_matter() -> None:
+    # Half of the rim is 376.99 mm: 24 gaps of 15.5 + 0.12 mm take a little over 24·15.62 = 374.88.
+    assert bridge_findings(cutter_with({"bridges": {"count": 24, "width_mm": 15.5}})) == []
+    assert bridge_findings(HELD, NOTCHED) == bridge_findings(LASER) == []
 
 
 def test_bridges_are_shared_out_by_length_with_one_more_for_the_longer() -> None:
