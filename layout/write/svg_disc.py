@@ -12,7 +12,7 @@ from layout.mechanics.arrays import FloatArray
 from layout.mechanics.frame import on_disc_mm
 from layout.place.disc import Disc
 from layout.write.svg_page import Page, short
-from layout.write.svg_paths import circles, lines_data, path_data
+from layout.write.svg_paths import circles, joined_data, lines_data, path_data
 from layout.write.svg_style import BLACK, EMPHASIS_WIDTH, LAYER_STYLES, OVER_EDGES
 
 _FROM_RECORD = ("AFTER_FORMING", "FOLDS", "TRACKS")  # all else is shown as it is cut
@@ -63,7 +63,11 @@ def _layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
     )
     group.elements.append(Title(style.title))
     data = path_data(entities)
-    if data:
+    if data and layer == "RIM" and not data.endswith("Z"):
+        # Bridges leave the rim open: the sheet is what all its lines bound, and no line bounds anything alone.
+        group.add(Path(d=joined_data(data), stroke="none", debug=False))
+        group.add(Path(d=data, fill="none", debug=False))
+    elif data:
         group.add(Path(d=data, debug=False))
     for x, y, radius in circles(entities):
         group.add(Circle(center=(x, y), r=radius, debug=False))

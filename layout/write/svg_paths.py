@@ -26,6 +26,12 @@ def path_data(entities: list[Entity]) -> str:
     return "".join(parts)
 
 
+def joined_data(data: str) -> str:
+    """Path data of open lines that go round in their order, as one closed outline: what they bound together."""
+    first, *others = data.split("M")[1:]
+    return "M" + "L".join([first, *others]) + "Z"
+
+
 def circles(entities: list[Entity]) -> Iterator[tuple[str, str, str]]:
     """Centre x, centre y and radius of every circle, as text."""
     for entity in entities:

@@ -14,11 +14,13 @@ from layout.cut.plan import Circles, Drawing, Lettering, Outlines, Points
 from layout.documents import Movement
 from layout.place.disc import Disc
 from layout.write import write_dxf, write_svg
+from tests.layout.examples import cutter_with
 from tests.layout.write.examples import (
     EXAMPLE_DISCS,
     FERNHOLLOW,
     FINGERPRINT,
     LASER,
+    MOSSBROOK,
     NEAR_LIMIT,
     ONE_FOLD,
     PRESS,
@@ -216,3 +218,18 @@ def test_fold_lines_are_drawn_over_the_working_edges() -> None:
     names = [group.get("id") for group in ElementTree.fromstring(svg_of(THREE_FOLDS)).iter(f"{SVG}g")]
 
     assert names.index("folds") > names.index("working_edges")
+
+
+@pytest.mark.parametrize("movement", [FERNHOLLOW, MOSSBROOK], ids=lambda movement: movement.id)
+def test_a_rim_left_open_by_bridges_still_bounds_the_sheet(movement: Movement) -> None:
+    bridged = cutter_with({"bridges": {"count": 4, "width_mm": 0.4}}, LASER)
+
+    with_bridges, closed = (svg_of(disc_of(movement, cutter, [(5, 90.0)])) for cutter in (bridged, LASER))
+
+    # A gap of half a millimetre is a few hundredths of the picture's width: nothing but a few pixels differs.
+    pictures = [
+        np.asarray(on_white(bytes(resvg_py.svg_to_bytes(svg_string=svg.decode(), width=600, dpi=96))))
+        for svg in (with_bridges, closed)
+    ]
+    differs = (pictures[0] != pictures[1]).any(axis=2)
+    assert 0 < differs.mean() < 0.01
