@@ -11,7 +11,7 @@ from layout.sheets.rows import rows_on
 
 # Budgets are counts, so that the same job gives the same sheets on a slow machine; for times see bench_sheets.
 _LAID_IN_ALL = 5000  # discs laid into corners over all tries on one sheet; about a second and a half
-_WALLS_LIKE_A_DISC = 10  # walls; to begin a size among so many takes as long as a disc laid
+_WALLS_LIKE_A_DISC = 10  # walls; to begin a size or a start among so many takes as long as a disc does
 _ROWS_FILLED_UP = 3  # row patterns whose rest is laid with discs; the others hold fewer
 _MOST_GROWN = 60  # discs; with more, rows are near the best and a start takes long
 _GROWN_ON_SHEET = 1600  # discs of all starts on one sheet; one to two seconds
@@ -96,7 +96,7 @@ def _with_one(ground: Ground, placed: Placed, size: int, starts: Starts) -> Plac
     begins = [np.concatenate([placed.centres_mm, spot[None]]) for spot in free]
     for place in range(len(begins) + _SCATTERED):
         begin = begins[place] if place < len(begins) else _scattered(room, radius_mm, place)
-        if begin is None or not starts.allow(len(sizes)):
+        if begin is None or not starts.allow(len(sizes) + len(room.start_mm) // _WALLS_LIKE_A_DISC):
             return None
         centres_mm, share = grown(room, begin, radius_mm, wanted.gap_mm)
         if share >= FULL:

@@ -23,7 +23,7 @@ class Room:
         end_mm: Shape (m, 2). Where it ends.
         keep_mm: Shape (m,). What a rim keeps from it: the margin at edges, 0 at clamp zones.
         before: Shape (m,). Index of the wall that ends where it begins.
-        lines: The same walls by what a rim keeps from them, made ready to ask for distances.
+        lines_mm: The same walls by what a rim keeps from them, made ready to ask for distances.
     """
 
     inside: shapely.MultiPolygon
@@ -31,7 +31,7 @@ class Room:
     end_mm: FloatArray
     keep_mm: FloatArray
     before: IntArray
-    lines: tuple[tuple[float, shapely.MultiLineString], ...]
+    lines_mm: tuple[tuple[float, shapely.MultiLineString], ...]
 
 
 def room_of(stock: Stock, margin_mm: float) -> Room:
@@ -68,7 +68,7 @@ def room_of(stock: Stock, margin_mm: float) -> Room:
         start_mm=np.concatenate(corners),
         end_mm=np.concatenate([np.roll(at, -1, axis=0) for at in corners]),
         keep_mm=np.concatenate([np.full(len(at), keep) for at, keep in rings_mm]),
-        lines=tuple(lines),
+        lines_mm=tuple(lines),
         before=np.concatenate(
             [first + np.roll(np.arange(count), 1) for first, count in zip(firsts, counts, strict=True)]
         ),
@@ -106,6 +106,6 @@ def clearance_mm(room: Room, points_mm: FloatArray) -> FloatArray:
 def fitting(room: Room, points_mm: FloatArray, radius_mm: float) -> FloatArray:
     """Those of the points where a disc of this radius keeps clear of the walls."""
     fits = shapely.contains_xy(room.inside, points_mm)
-    for keep_mm, lines in room.lines:
+    for keep_mm, lines in room.lines_mm:
         fits &= ~shapely.dwithin(lines, shapely.points(points_mm), keep_mm + radius_mm - GRAIN_MM)
     return points_mm[fits]
