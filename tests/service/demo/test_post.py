@@ -1,5 +1,6 @@
 import json
 import threading
+import zipfile
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 from http.server import BaseHTTPRequestHandler, ThreadingHTTPServer
@@ -10,10 +11,19 @@ import mido
 import pytest
 from werkzeug.wrappers import Request
 
+from layout.documents.sheets import read_sheet_job
 from service.demo import post
+from service.demo.workshop import post_sheets
 
 # 40 s a turn, 20 deg before and 14 deg after the music: 40 * 326 / 360 = 36.222 s free.
-SHORT_TURN = {"id": "short-9", "title": "Short", "revolution_s": 40, "before_music_deg": 20, "after_music_deg": 14}
+SHORT_TURN = {
+    "id": "short-9",
+    "title": "Short",
+    "revolution_s": 40,
+    "before_music_deg": 20,
+    "after_music_deg": 14,
+    "disc": {"outer_diameter_mm": 118},
+}
 LONG_TURN = SHORT_TURN | {"id": "long-9", "title": "Long", "revolution_s": 90}
 FREE_PART_S = 40 * 326 / 360
 
@@ -45,7 +55,17 @@ class StandIn:
             return 200, json.dumps(movement).encode()
         if path.startswith("/v1/layouts"):
             return 201, json.dumps({"layout": LAYOUT, "links": self.links, "good_to_cut": True}).encode()
+        if path.startswith(("/v1/trial-pieces", "/v1/sheets")):
+            return 200, archive_with({"drawing.dxf": f"file {path}", "../parts.csv": "one"})
         return 200, f"file {path}".encode()
+
+
+def archive_with(files: dict[str, str]) -> bytes:
+    kept = BytesIO()
+    with zipfile.ZipFile(kept, "w") as packed:
+        for name, text in files.items():
+            packed.writestr(name, text)
+    return kept.getvalue()
 
 
 @pytest.fixture
@@ -184,8 +204,25 @@ def test_the_demo_keeps_the_files_of_every_movement_in_a_folder_of_its_own(stand
         "short-9/hits.csv": "file /files/2",
         "long-9/disc.dxf": "file /files/1",
         "long-9/hits.csv": "file /files/2",
+        "trial-piece/drawing.dxf": "file /v1/trial-pieces?movement=short-9",
+        "trial-piece/parts.csv": "one",
+        "sheets/drawing.dxf": "file /v1/sheets",
+        "sheets/parts.csv": "one",
     }
     assert f"  written to {tmp_path / 'long-9'}: disc.dxf, hits.csv" in said
+
+
+def test_the_demo_asks_for_sheets_of_discs_of_every_movement_and_takes_them_whole(stand_in: StandIn) -> None:
+    documents = [{"id": name, "disc": {"outer_diameter_mm": size}} for name, size in (("a-1", 100), ("b-2", 200.5))]
+
+    files = post_sheets(stand_in.address, documents, lambda _: None)
+
+    [(path, media_type, body)] = stand_in.posted
+    job = read_sheet_job(body)  # as the service reads it
+    assert (path, media_type) == ("/v1/sheets", "application/json")
+    assert [(one.id, one.diameter_mm, one.quantity) for one in job.discs] == [("a-1", 100, 4), ("b-2", 200.5, 4)]
+    assert [stock.id for stock in job.stock] == ["offcut", "sheet"]
+    assert set(files) == {"drawing.dxf", "../parts.csv"}
 
 
 def test_a_file_name_with_a_path_in_it_stays_in_its_folder(tmp_path: Path) -> None:
