@@ -10,6 +10,8 @@ ADDRESSES = {
     "movements": "/v1/movements",
     "cutters": "/v1/cutters",
     "layouts": "/v1/layouts",
+    "trial_pieces": "/v1/trial-pieces",
+    "sheets": "/v1/sheets",
     "limits": "/v1/limits",
     "problems": "/problems",
     "health": "/healthz",
