@@ -8,7 +8,6 @@ import subprocess
 import sys
 import time
 import zipfile
-from collections import Counter
 from collections.abc import Iterator
 from pathlib import Path
 from typing import get_args
@@ -18,7 +17,7 @@ import pytest
 
 from layout import walk
 from layout.arrange.arrangement import LeftOutReason
-from layout.documents import Settings
+from layout.documents import Settings, shipped_cutter
 from service.api.problems import PROBLEMS
 from service.limits import Limits
 
@@ -27,6 +26,15 @@ README = (TOP / "README.md").read_text()
 BLOCKS = re.findall(r"```sh\n(.*?)```", README, flags=re.DOTALL)
 CURL = [command for block in BLOCKS for command in re.findall(r"^curl .*?[^\\]$", block, re.DOTALL | re.MULTILINE)]
 COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith(("discwright ", "printf "))]
+
+LASER_FILES = walk.files_for(shipped_cutter("fibre-laser"))
+TRIAL_FILES = {"trial-piece.dxf", "trial-piece.json", "measure.pdf"}
+# What the archives of the examples hold, their names in order.
+ARCHIVES = {
+    "demo/discs.zip": " ".join(rf"{disc}/\S+" for disc in (1, 2) for _ in LASER_FILES),
+    "demo/trial-piece.zip": r"measure_\S+\.pdf trial-piece_\S+\.dxf trial-piece_\S+\.json",
+    "demo/sheets.zip": r"parts\.csv sheet-1\.dxf sheets\.json",
+}
 
 
 @pytest.fixture(scope="module")
@@ -66,6 +74,10 @@ def run(command: str, folder: Path) -> subprocess.CompletedProcess[str]:
 @pytest.mark.skipif(shutil.which("curl") is None, reason="the README's examples need curl")
 @pytest.mark.parametrize("command", CURL)
 def test_a_curl_line_of_the_readme_works(command: str, address: str, tmp_path: Path) -> None:
+    written = [line for line in COMMANDS if line.startswith("printf ") and line.rpartition("> ")[2] in command]
+    for line in written:
+        run(line, tmp_path)
+
     result = run(command.replace("http://127.0.0.1:8000", address), tmp_path)
 
     assert result.stderr == ""
@@ -77,11 +89,14 @@ def test_a_curl_line_of_the_readme_works(command: str, address: str, tmp_path: P
         assert len(ezdxf.readfile(tmp_path / told[1]).modelspace().query("LWPOLYLINE[layer=='SLITS']")) > 300
     elif told[1].endswith(".zip"):
         with zipfile.ZipFile(tmp_path / told[1]) as archive:
-            assert Counter(name.partition("/")[0] for name in archive.namelist()) == {"1": 6, "2": 6}
+            assert re.fullmatch(ARCHIVES[told[1]], " ".join(sorted(archive.namelist())))
     elif told[1].endswith(".svg"):
         assert "<svg" in (tmp_path / told[1]).read_text()
     else:
-        assert set(walk.FILES) <= set(json.loads((tmp_path / told[1]).read_text())["links"])
+        made_for = "turn-press" if "cutter=turn-press" in command else "fibre-laser"
+        assert set(walk.files_for(shipped_cutter(made_for))) == set(
+            json.loads((tmp_path / told[1]).read_text())["links"]
+        )
 
 
 def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> None:
@@ -95,16 +110,18 @@ def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> 
         assert result.returncode == 0, f"{command}: {result.stderr}"
         assert bool(result.stdout) == ours
 
-    for disc in ("1", "2"):
-        assert {path.name for path in (tmp_path / "demo/two-discs" / disc).iterdir()} == set(walk.FILES)
-    assert {path.name for path in (tmp_path / "demo/by-hand").iterdir()} == set(walk.FILES)
+    for folder in ("two-discs/1", "two-discs/2", "by-hand"):
+        assert {path.name for path in (tmp_path / "demo" / folder).iterdir()} == set(LASER_FILES)
+    assert {path.name for path in (tmp_path / "demo/trial").iterdir()} == TRIAL_FILES
+    sheets = {path.name for path in (tmp_path / "demo/sheets-by-hand").iterdir()}
+    assert sheets == {"sheets.json", "parts.csv", "sheet-1.dxf"}  # 8 of 237 mm: four by two on 1000 by 500
     written = json.loads((tmp_path / "demo/written/report.json").read_text())
     assert written["extra_pluck_count"] > 0
 
 
 def test_the_readme_has_examples_to_run() -> None:
-    assert len(CURL) == 8
-    assert len(COMMANDS) == 11
+    assert len(CURL) == 10
+    assert len(COMMANDS) == 14
 
 
 def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:
