@@ -11,11 +11,11 @@ import shapely
 from shapely import affinity
 from shapely.geometry.base import BaseGeometry
 
-from layout.cut.lettering import strokes_mm
 from layout.cut.plan import Lettering
 from layout.cut.room import CLEAR_MM, Rooms
 from layout.cut.wording import Inscription
 from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.lettering import strokes_mm
 
 # Heights of capitals, mm, tried from the first. ISO 3098 starts technical lettering at 1.8 mm; a laser's line
 # of 0.15 mm still leaves 1.2 mm legible (common practice); above 3 mm the lettering would crowd a small disc.

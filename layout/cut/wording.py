@@ -3,9 +3,9 @@
 import math
 from dataclasses import dataclass
 
-from layout.cut.plain_letters import is_mostly_lost, plain_ascii
 from layout.documents.cutter import Cutter
 from layout.mechanics.bending import over_bend_rad
+from layout.mechanics.plain_letters import is_mostly_lost, plain_ascii
 from layout.place.disc import Disc
 from layout.version import ENGINE_VERSION
 

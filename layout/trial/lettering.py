@@ -4,12 +4,11 @@ import math
 from functools import cache
 
 import numpy as np
-from HersheyFonts import HersheyFonts
 
 from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.lettering import strokes_mm
 
 LETTER_HEIGHT_MM = 1.8  # mm; ISO 3098 starts technical lettering at 1.8 mm
-_FACE = "futural"  # the library's name for A. V. Hershey's simplex Roman, public domain
 
 
 @cache
@@ -19,16 +18,7 @@ def text_strokes_mm(text: str) -> tuple[FloatArray, ...]:
     Args:
         text: Printable ASCII; blanks alone give no strokes.
     """
-    font = HersheyFonts(load_default_font=_FACE)
-    heights = font.render_options
-    scale = LETTER_HEIGHT_MM / (heights.base_line - heights.cap_line)
-    drawn = [np.array(stroke, dtype=np.float64) for stroke in font.strokes_for_text(text)]
-    if not drawn:
-        return ()
-    x = np.concatenate(drawn)[:, 0]
-    # The library's y runs downwards.
-    origin, flip = np.array([(x.min() + x.max()) / 2, heights.base_line]), np.array([scale, -scale])
-    return tuple(frozen_floats((stroke - origin) * flip) for stroke in drawn)
+    return strokes_mm(text, LETTER_HEIGHT_MM)
 
 
 def half_width_mm(text: str) -> float:

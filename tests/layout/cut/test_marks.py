@@ -9,9 +9,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from layout.cut import CutPlan, plan_cuts
-from layout.cut.lettering import strokes_mm
 from layout.cut.plan import Circles, Drawing, Lettering, Outlines
 from layout.documents import Cutter, Movement
+from layout.mechanics.lettering import strokes_mm
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 

@@ -8,11 +8,11 @@ import shapely
 from ezdxf.math import bulge_to_arc
 
 from layout.cut import plan_cuts
-from layout.cut.lettering import strokes_mm
 from layout.cut.plan import Outlines
 from layout.documents import Cutter, Movement
 from layout.errors import DocumentError
 from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.lettering import strokes_mm
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
 from layout.trial import trial_piece

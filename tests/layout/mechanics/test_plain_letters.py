@@ -2,7 +2,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from layout.cut.plain_letters import is_mostly_lost, plain_ascii
+from layout.mechanics.plain_letters import is_mostly_lost, plain_ascii
 
 
 @pytest.mark.parametrize(
