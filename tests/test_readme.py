@@ -17,7 +17,11 @@ import pytest
 
 from layout import walk
 from layout.arrange.arrangement import LeftOutReason
-from layout.documents import Settings, shipped_cutter
+from layout.documents import Cutter, Settings, shipped_cutter
+from layout.documents.cutter import Fold
+from layout.documents.drive import Drive, Winding
+from layout.documents.making import Feeds
+from layout.documents.movement import DiscBlank
 from service.api.problems import PROBLEMS
 from service.limits import Limits
 
@@ -165,3 +169,18 @@ def test_the_first_paragraph_states_the_job() -> None:
     assert "MIDI file" in first
     assert "movement" in first
     assert "can be cut" in first
+
+
+def test_every_field_a_document_may_leave_out_is_told() -> None:
+    parts = {"cutter": Cutter, "fold": Fold, "feeds": Feeds, "disc": DiscBlank, "drive": Drive, "winding": Winding}
+    optional = {
+        f"{part} {name}"
+        for part, model in parts.items()
+        for name, field in model.model_fields.items()
+        if field.default is None or name in ("labels", "drawing_release", "relief_ends")
+    }
+    told = README[README.index("What a shop and a movement may state") : README.index("Layouts are kept for their")]
+
+    untold = {one for one in optional if re.search(rf"\b{one.split()[1]}\b", told) is None}
+
+    assert untold == {"fold slit_width_mm", "fold relief_width_mm"}  # sizes of the fold itself
