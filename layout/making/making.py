@@ -82,6 +82,8 @@ class Making:
             the currency's smallest unit is not known here: amounts are then exact, and not rounded.
         not_stated: Fields of the documents that would be needed for a figure that is missing, such as
             "cutter.feeds.cut_mm_per_s"; empty where all can be told.
+        not_counted: What no figure of time and price counts, since no document says how it is made: on a press
+            the holes, the rim and taking up the first tool; empty on a laser.
     """
 
     cut_length_mm: float | None = None
@@ -101,3 +103,4 @@ class Making:
     currency: str | None = None
     currency_decimals: int | None = None
     not_stated: tuple[str, ...] = ()
+    not_counted: tuple[str, ...] = ()

@@ -14,6 +14,8 @@ from layout.mechanics.projection import fitting_tool
 from layout.mechanics.punching import cutting_force_n, sheared_length_mm, stripping_force_n
 from layout.place.disc import Disc
 
+NOT_COUNTED_ON_A_PRESS = ("holes", "rim", "first tool")
+
 _NO_FEEDS = Feeds()
 
 
@@ -55,6 +57,7 @@ def making_of(disc: Disc, plan: CutPlan) -> Making:
         currency=None if rates is None else rates.currency,
         currency_decimals=None if rates is None else MINOR_UNIT_DECIMALS.get(rates.currency),
         not_stated=_not_stated(disc, path, parts),
+        not_counted=NOT_COUNTED_ON_A_PRESS if cutter.kind == "punch-press" else (),
     )
 
 

@@ -49,6 +49,7 @@ def write_making(making: Making, fingerprint: str) -> bytes:
             "price_lines": [_line(line) for line in making.price_lines],
             "total": None if making.total is None else f"{making.total:f}",
             "not_stated": list(making.not_stated),
+            "not_counted": list(making.not_counted),
         }
     )
 

@@ -26,6 +26,8 @@ def making_lines(making: Making) -> list[str]:
         lines += wrapped("price", f"{making['total']} {making['currency']}: {parts}")
     if making["not_stated"]:
         lines += wrapped("not stated", ", ".join(making["not_stated"]))
+    if making["not_counted"]:
+        lines += wrapped("not counted", ", ".join(making["not_counted"]))
     return lines
 
 

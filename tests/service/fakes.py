@@ -112,6 +112,7 @@ MAKING: dict[str, Any] = {
     "price_lines": [],
     "total": None,
     "not_stated": ["cutter.rates"],
+    "not_counted": [],
 }
 
 

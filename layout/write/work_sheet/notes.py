@@ -38,6 +38,8 @@ def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: M
     if making.not_stated:
         missing = f"Not stated, so not told: {', '.join(making.not_stated)}."
         area = written(paper, area, missing, SMALL, most_lines=_MOST_NOT_STATED_LINES)
+    if making.not_counted:
+        area = written(paper, area, f"Not counted in time and price: {', '.join(making.not_counted)}.", SMALL)
     return area
 
 
@@ -119,7 +121,7 @@ def _price(paper: Paper, area: Area, making: Making) -> Area:
         named = [(line.name, f"{line.amount} {currency}")]
         area = rows_written(paper, area, named, name_mm=_NAME_MM, most_lines=1, gap_mm=0.0)
         worked = area.beside(_NAME_MM, area.width_mm - _NAME_MM)
-        left = written(paper, worked, f"{line.quantity} {line.per} at {line.rate}", SMALL, most_lines=1)
+        left = written(paper, worked, f"{line.quantity} × {line.rate} per {line.per}", SMALL, most_lines=1)
         area = area.below(area.height_mm - left.height_mm + ROW_GAP_MM)
     total = [] if making.total is None else [("price", f"{making.total} {currency}")]
     return rows_written(paper, area, total, name_mm=_NAME_MM, most_lines=1)

@@ -326,6 +326,11 @@ def test_a_hit_takes_its_sheared_length_times_thickness_times_strength() -> None
     assert making.not_stated == ()
 
 
+def test_what_no_figure_counts_on_a_press_is_named_and_a_laser_counts_all() -> None:
+    assert made(NOTHING, {}, STEEL, PRESS_IN_FULL).not_counted == ("holes", "rim", "first tool")
+    assert made(NOTHING, {}, STEEL).not_counted == ()
+
+
 def test_a_force_that_cannot_be_told_is_named_on_a_press_and_not_missed_on_a_laser() -> None:
     soft = made(NOTHING, {}, STEEL, PRESS_IN_FULL)
     no_press = made(NOTHING, {"press": None}, SHEARED, PRESS)

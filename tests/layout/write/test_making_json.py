@@ -12,7 +12,7 @@ FINGERPRINT = "0123456789abcdef"
 FIELDS = [
     *("format", "fingerprint", "engine_version", "cut_length_mm", "mark_length_mm", "rapid_length_mm"),
     *("pierce_count", "hit_count", "hit_force_n", "stripping_force_n", "fold_to_deg", "blank_mass_kg", "disc_mass_kg"),
-    *("time_s", "time_parts", "currency", "currency_decimals", "price_lines", "total", "not_stated"),
+    *("time_s", "time_parts", "currency", "currency_decimals", "price_lines", "total", "not_stated", "not_counted"),
 ]
 PRICED = Making(
     cut_length_mm=1000.0000004,
@@ -32,6 +32,7 @@ PRICED = Making(
     currency="EUR",
     currency_decimals=2,
     not_stated=("cutter.feeds.pierce_s",),
+    not_counted=("rim",),
 )
 
 
@@ -48,6 +49,7 @@ def test_the_fields_stand_in_their_order_with_what_the_making_holds() -> None:
     assert record["time_parts"]["cut_s"] == 20.0
     assert record["time_parts"]["pierce_s"] is None
     assert record["not_stated"] == ["cutter.feeds.pierce_s"]
+    assert record["not_counted"] == ["rim"]
 
 
 def test_amounts_are_decimal_text_whose_sum_is_the_total() -> None:

@@ -338,8 +338,8 @@ def test_what_making_takes_is_told_in_full() -> None:
 
     for said in (
         *("cut 12.346 m", "marked 2.222 m", "between cuts 9.876 m", "pierced 364 times", "machine time 20 min 34.5 s"),
-        *("mass of blank 0.1731 kg", "mass of disc 0.1700 kg", "setup 12.50 EUR 1 disc at 12.50"),
-        *("machine time 37.04 EUR 20.5750 min at 1.80", "pierces 3.64 EUR 364 pierce at 0.01"),
+        *("mass of blank 0.1731 kg", "mass of disc 0.1700 kg", "setup 12.50 EUR 1 × 12.50 per disc"),
+        *("machine time 37.04 EUR 20.5750 × 1.80 per min", "pierces 3.64 EUR 364 × 0.01 per pierce"),
         *("sheet 0.55 EUR 0.1732 kg at 3.20", "price 53.73 EUR"),
     ):
         assert said in words
@@ -363,4 +363,7 @@ def test_what_nobody_stated_is_named_and_nothing_is_guessed() -> None:
 
     assert "Not stated, so not told: cutter.feeds.cut_mm_per_s, cutter.rates." in words
     assert "machine time" not in words
+    assert "Not counted" not in words
+    press = words_of(sheet_of(ONE_FOLD, making=Making(not_counted=("holes", "rim"))))
+    assert "Not counted in time and price: holes, rim." in press
     assert "What making it takes" not in words_of(sheet_of(ONE_FOLD, making=None))

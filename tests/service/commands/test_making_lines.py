@@ -16,6 +16,7 @@ LASER: dict[str, Any] = {
     "price_lines": [{"name": "setup", "amount": "18.00"}, {"name": "sheet", "amount": "0.42"}],
     "total": "18.42",
     "not_stated": [],
+    "not_counted": [],
 }
 PRESS = LASER | {"cut_length_mm": 0.0, "pierce_count": 0, "hit_count": 359, "hit_force_n": 855.6}
 
@@ -55,3 +56,9 @@ def test_a_disc_whose_path_is_not_worked_out_says_so() -> None:
     [work, _] = making_lines(LASER | {"cut_length_mm": None, "pierce_count": None})
 
     assert "path not worked out" in work
+
+
+def test_what_time_and_price_leave_out_is_said() -> None:
+    lines = making_lines(PRESS | {"not_counted": ["holes", "rim"]})
+
+    assert lines[-1] == "  not counted holes, rim"
