@@ -340,7 +340,7 @@ def test_what_making_takes_is_told_in_full() -> None:
         *("cut 12.346 m", "marked 2.222 m", "between cuts 9.876 m", "pierced 364 times", "machine time 20 min 34.5 s"),
         *("mass of blank 0.1731 kg", "mass of disc 0.1700 kg", "setup 12.50 EUR 1 × 12.50 per disc"),
         *("machine time 37.04 EUR 20.5750 × 1.80 per min", "pierces 3.64 EUR 364 × 0.01 per pierce"),
-        *("sheet 0.55 EUR 0.1732 kg at 3.20", "price 53.73 EUR"),
+        *("sheet 0.55 EUR 0.1732 × 3.20 per kg", "price 53.73 EUR"),
     ):
         assert said in words
     assert "struck" not in words
