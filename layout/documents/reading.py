@@ -16,6 +16,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationEr
 from layout.errors import DocumentError, Problem
 
 MOST_LEVELS = 12  # lists and objects in each other; the deepest document has five
+MOST_DIGITS = 400  # of a whole number: more than the greatest a double holds
 _TOO_DEEP = f"lists and objects are nested more than {MOST_LEVELS} deep; a document needs fewer"
 Json = Any  # what json.loads gives: the one place where the type is not known yet
 
@@ -120,13 +121,19 @@ def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Json
         raise ValueError(f"{name} is not a JSON number")
 
     try:
-        value = json.loads(text, parse_constant=refuse, object_pairs_hook=_without_doubles)
+        value = json.loads(text, parse_constant=refuse, parse_int=_whole, object_pairs_hook=_without_doubles)
         return _take_apart(value, "", MOST_LEVELS)
     except RecursionError as error:
         raise DocumentError(document=document, problems=(Problem(pointer="", message=_TOO_DEEP),)) from error
     except ValueError as error:
         message = f"not JSON: {error}; write the document as one JSON object"
         raise DocumentError(document=document, problems=(Problem(pointer="", message=message),)) from error
+
+
+def _whole(digits: str) -> int:
+    if len(digits) > MOST_DIGITS:
+        raise ValueError(f"a number of {len(digits)} digits; {MOST_DIGITS} are the most any field needs")
+    return int(digits)
 
 
 def _without_doubles(pairs: list[tuple[str, Json]]) -> dict[str, Json]:

@@ -36,7 +36,8 @@ def read_query(query: MultiDict[str, str], *, known: tuple[str, ...], most_reaso
     """
     for name, values in query.lists():
         if name not in known:
-            raise _invalid(name, f"there is no parameter called {name!r} here; known are {', '.join(known)}")
+            others = f"known are {', '.join(known)}" if known else "none are taken"
+            raise _invalid(name, f"there is no parameter called {name!r} here; {others}")
         if len(values) > 1:
             raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
     return Query(

@@ -178,3 +178,8 @@ def test_an_unknown_id_names_the_ids_there_are() -> None:
         NotShippedError, match="no movement has the id 'fern'; known: fernhollow-31, mossbrook-67, tarnlight-17"
     ):
         shipped_movement("fern")
+
+
+def test_a_whole_number_longer_than_any_is_refused_in_our_words() -> None:
+    with pytest.raises(DocumentError, match="movement: not JSON: a number of 10000 digits; 400 are the most"):
+        read_movement('{"revision": ' + 10_000 * "9" + "}")
