@@ -181,5 +181,5 @@ def test_an_unknown_id_names_the_ids_there_are() -> None:
 
 
 def test_a_whole_number_longer_than_any_is_refused_in_our_words() -> None:
-    with pytest.raises(DocumentError, match="movement: not JSON: a number of 10000 digits; 400 are the most"):
+    with pytest.raises(DocumentError, match="not JSON: a number of 10000 digits; 400 are the most"):
         read_movement('{"revision": ' + 10_000 * "9" + "}")
