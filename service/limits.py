@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 from layout.limits import Limit, limit, limits_told
+from layout.sheet_walk import LIMITS_OF_SHEETS
 from layout.walk import LIMITS_OF_READING
 
 MIB = 1024 * 1024
@@ -21,6 +22,9 @@ class Limits:
     form_parts: int = limit(8, "parts", "most parts of a multipart body: four are known, a few more get a clear error")
     drawing_bytes: int = limit(
         10 * MIB, "bytes", "largest drawing that is checked: a disc of 20,000 projections; reading one takes a minute"
+    )
+    sheet_form_bytes: int = limit(
+        6 * MIB, "bytes", "largest form with a sheet job and drawings: the largest job, and 4 MiB of drawings"
     )
     reason_characters: int = limit(
         200, "characters", "longest despite_findings reason: it is lettered on the disc and stands in every file"
@@ -48,5 +52,5 @@ class Limits:
     )
 
     def told(self) -> tuple[Limit, ...]:
-        """Every limit: those of reading a tune, then these, in the order of the fields."""
-        return LIMITS_OF_READING + limits_told(self)
+        """Every limit: those of reading a tune, of sheet jobs, then these, in the order of the fields."""
+        return LIMITS_OF_READING + LIMITS_OF_SHEETS + limits_told(self)

@@ -73,6 +73,8 @@ class Code(StrEnum):
     MARKED_NOT_GOOD = "marked-not-good"
     OTHER_SIDE = "other-side"
     SIDE_NOT_SHOWN = "side-not-shown"
+    # many discs on sheets
+    DISC_NOT_PLACED = "disc-not-placed"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -19,15 +19,23 @@ LEAST_REMNANT_MM = 100.0  # mm; unless the job says otherwise: a hand's width, w
 class SheetLimits:
     """How large a sheet job may be; each keeps the time it takes, and the files it gives, within reason."""
 
-    stock_kinds: int = limit(50, "kinds", "most entries of stock: a rack of remnants")
+    stock_kinds: int = limit(
+        32, "kinds", "most entries of stock: a rack of remnants; each takes up to a second and more"
+    )
     sheets: int = limit(200, "sheets", "most sheets of all kinds together; each gives a drawing")
     disc_kinds: int = limit(24, "kinds", "most entries of discs: each is placed in turn on every sheet")
     discs: int = limit(
         2000, "discs", "most discs of all kinds together; a full sheet of them takes a quarter of a minute"
     )
     outline_corners: int = limit(500, "corners", "most corners of an outline with its openings: a much cut remnant")
-    job_corners: int = limit(4000, "corners", "most corners of all outlines of a job: a rack of remnants, each with 80")
+    job_corners: int = limit(1600, "corners", "most corners of all outlines of a job: a rack of remnants, each with 50")
     clamps: int = limit(20, "zones", "most clamp zones of a sheet: more than a bed has clamps")
+    drawing_mib: int = limit(4, "MiB", "all drawings of a job together; to read that much takes seven seconds")
+    drawn_vertices: int = limit(
+        200_000,
+        "vertices",
+        "most vertices of the drawings of all discs together: 50 of 4000 each; to write that much takes 12 seconds",
+    )
     longest_mm: int = limit(6000, "mm", "farthest a sheet may reach: above the largest plates that are traded")
 
 

@@ -30,7 +30,7 @@ CUT_LAYERS = ("SLITS", "SLOTS", "HITS", "HOLES", "RIM")
 RECORD_LAYERS = ("AFTER_FORMING", "FOLDS", "TRACKS")  # a drawing that holds any of these is only for reading
 _FULL_TURN_DEG = 360.0
 _ONE_PIECE = 2  # vertices of a chain of one line or arc
-_WIDEST_BULGE = 1e6  # an arc that lacks 0.0002 degrees of a whole circle; more is no arc
+WIDEST_BULGE = 1e6  # an arc that lacks 0.0002 degrees of a whole circle; more is no arc
 
 Vertex = tuple[float, float, float]  # x, y in mm and the bulge of the piece that starts here
 
@@ -225,7 +225,7 @@ def _checked(layer: str, vertices: Iterable[Vertex], farthest_mm: float) -> list
     checked = [(float(x), float(y), float(bulge)) for x, y, bulge in vertices]
     for x, y, bulge in checked:
         # Not-a-number compares false with everything, so it ends here too.
-        if not (abs(x) <= farthest_mm and abs(y) <= farthest_mm and abs(bulge) <= _WIDEST_BULGE):
+        if not (abs(x) <= farthest_mm and abs(y) <= farthest_mm and abs(bulge) <= WIDEST_BULGE):
             raise DrawingReadError(
                 f"drawing: layer {layer} has a vertex at ({x:g}, {y:g}) with bulge {bulge:g}; coordinates must be "
                 f"within {farthest_mm:g} mm of the centre; check the drawing's units and origin"

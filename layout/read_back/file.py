@@ -41,11 +41,25 @@ def read_drawing(dxf: bytes, cutter: Cutter, *, farthest_mm: float) -> CutDrawin
     Raises:
         DrawingReadError: Too large, no ASCII DXF, damaged beyond use, or not in millimetres.
     """
+    with open_drawing(dxf) as (document, mended):
+        return cut_drawing_of(document, cutter, farthest_mm=farthest_mm, mended=mended)
+
+
+@contextmanager
+def open_drawing(dxf: bytes) -> Iterator[tuple[Drawing, bool]]:
+    """The document of a DXF file, and whether it had to be mended; what the library stumbles over becomes an error.
+
+    Args:
+        dxf: The file.
+
+    Raises:
+        DrawingReadError: As for read_drawing, from here or from what is read of the document meanwhile.
+    """
     _refuse_by_its_bytes(dxf)
     with _stumbles_as_errors():
         document, mended = _document(dxf)
         _refuse_other_units(dxf, document)
-        return cut_drawing_of(document, cutter, farthest_mm=farthest_mm, mended=mended)
+        yield document, mended
 
 
 def _refuse_by_its_bytes(dxf: bytes) -> None:

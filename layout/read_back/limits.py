@@ -17,5 +17,6 @@ SHAPE_WITHIN_MM = 0.02  # mm; below the position tolerance of any cutter, above 
 SQUARE_WITHIN_DEG = 0.2  # degrees; 0.007 mm over a projection 2 mm long
 TRACK_WITHIN_MM = 0.02  # mm; as for shapes
 BLANK_WITHIN_MM = 0.02  # mm; as for shapes
+CENTRED_WITHIN_MM = 0.01  # mm; a fifth of a cutter's position tolerance, above any rounding of a file
 SAME_CUT_MM = 0.01  # mm; two cuts nearer than this are one cut drawn twice
 CLEARLY_OUTSIDE_S = 0.01  # s; more than a cut within these tolerances may be early or late

@@ -18,7 +18,7 @@ def findings_on_the_file(dxf: bytes, drawing: CutDrawing, cutter: Cutter) -> lis
     findings = []
     if drawing.record_layers:
         findings.append(_is_a_record(drawing.record_layers, cutter))
-    reason = _marked_reason(dxf)
+    reason = marked_reason(dxf)
     if reason is not None:
         findings.append(_is_marked(reason))
     if drawing.mended:
@@ -66,9 +66,13 @@ def _finding(code: Code, level: Level, message: str, remedy: str) -> Finding:
     )
 
 
-def _marked_reason(dxf: bytes) -> str | None:
-    """The reason beside the mark in the file's head; "" where the mark stands alone, None without a mark."""
-    comments = _head_comments(dxf)
+def marked_reason(dxf: bytes) -> str | None:
+    """The reason beside the mark in the file's head; "" where the mark stands alone, None without a mark.
+
+    Args:
+        dxf: The file.
+    """
+    comments = head_comments(dxf)
     for line in comments:
         at = line.upper().find(_MARK)
         if at < 0:
@@ -83,8 +87,12 @@ def _marked_reason(dxf: bytes) -> str | None:
     return None
 
 
-def _head_comments(dxf: bytes) -> Iterator[str]:
-    """Comments before the first section, in printable characters."""
+def head_comments(dxf: bytes) -> Iterator[str]:
+    """Comments before the first section, in printable characters.
+
+    Args:
+        dxf: The file.
+    """
     lines = io.BytesIO(dxf)
     while lines.readline().strip() == _COMMENT:
         text = lines.readline().decode("utf-8", errors="replace").strip()

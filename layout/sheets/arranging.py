@@ -2,14 +2,16 @@
 
 import hashlib
 import json
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 
 import numpy as np
 import shapely
 
 from layout.documents.sheets import SheetJob, Stock
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats, frozen_ints
+from layout.mechanics.drawn import DrawnDisc
 from layout.sheets.cutting_order import cutting_order, held_end
+from layout.sheets.drawings import check_drawings, farthest_lead_mm
 from layout.sheets.filling import Starts, filled
 from layout.sheets.placing import Placed, Wanted
 from layout.sheets.plan import DiscKind, Sheet, SheetPlan
@@ -18,7 +20,7 @@ from layout.sheets.room import Room, room_of
 from layout.version import ENGINE_VERSION
 
 
-def arrange_on_sheets(job: SheetJob) -> SheetPlan:
+def arrange_on_sheets(job: SheetJob, drawn: Mapping[str, DrawnDisc] | None = None) -> SheetPlan:
     """The discs of a job on its stock, sheet after sheet in the order in which the stock is listed.
 
     On each sheet as much area of discs as is found is placed, of what is still wanted; what fits on no
@@ -26,12 +28,18 @@ def arrange_on_sheets(job: SheetJob) -> SheetPlan:
 
     Args:
         job: What is wanted, and the stock.
+        drawn: By the id of the disc, what is cut and marked of it; a disc without one is a plain circle.
+
+    Raises:
+        DocumentError: A drawing does not fit the job.
     """
+    drawings = drawn or {}
+    check_drawings(job, drawings)
     falling = sorted(range(len(job.discs)), key=lambda kind: -job.discs[kind].diameter_mm)
     left = np.array([each.quantity for each in job.discs])
     sheets: list[Sheet] = []
     starts = Starts()
-    for stock, copy, room, known in _sheets_of(job):
+    for stock, copy, room, known in _sheets_of(job, farthest_lead_mm(drawings)):
         kinds = [kind for kind in falling if left[kind]]
         if not kinds:
             break
@@ -46,32 +54,38 @@ def arrange_on_sheets(job: SheetJob) -> SheetPlan:
             sheets.append(_sheet(job, stock, copy, placed, kind))
     return SheetPlan(
         title=job.title,
-        fingerprint=sheet_fingerprint(job),
+        fingerprint=sheet_fingerprint(job, drawings),
         gap_mm=job.gap_mm,
         kinds=tuple(
-            DiscKind(id=each.id, diameter_mm=each.diameter_mm, wanted_count=each.quantity, placed_count=placed_count)
-            for each, placed_count in zip(
-                job.discs, [each.quantity - int(rest) for each, rest in zip(job.discs, left, strict=True)], strict=True
+            DiscKind(
+                id=each.id,
+                diameter_mm=each.diameter_mm,
+                wanted_count=each.quantity,
+                placed_count=each.quantity - rest,
+                drawing=drawings.get(each.id),
             )
+            for each, rest in zip(job.discs, left.tolist(), strict=True)
         ),
         sheets=tuple(sheets),
         untouched_count=sum(stock.quantity for stock in job.stock) - len(sheets),
     )
 
 
-def sheet_fingerprint(job: SheetJob) -> str:
-    """Sixteen hex digits that name this job and this engine."""
-    parts = {"engine": ENGINE_VERSION, "job": job.model_dump(mode="json")}
+def sheet_fingerprint(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> str:
+    """Sixteen hex digits that name this job, its drawings and this engine."""
+    parts: dict[str, object] = {"engine": ENGINE_VERSION, "job": job.model_dump(mode="json")}
+    if drawings:
+        parts["drawings"] = {disc_id: drawn.digest for disc_id, drawn in drawings.items()}
     return hashlib.sha256(json.dumps(parts, sort_keys=True).encode()).hexdigest()[:16]
 
 
 _Known = dict[tuple[tuple[int, ...], tuple[int, ...]], Placed]
 
 
-def _sheets_of(job: SheetJob) -> Iterator[tuple[Stock, int, Room, _Known]]:
+def _sheets_of(job: SheetJob, clamps_mm: float) -> Iterator[tuple[Stock, int, Room, _Known]]:
     """Every sheet of the stock with its room, and what is found out about sheets of its kind."""
     for stock in job.stock:
-        room = room_of(stock, job.margin_mm if stock.margin_mm is None else stock.margin_mm)
+        room = room_of(stock, job.margin_mm if stock.margin_mm is None else stock.margin_mm, clamps_mm)
         known: _Known = {}
         for copy in range(1, stock.quantity + 1):
             yield stock, copy, room, known

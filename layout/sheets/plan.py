@@ -7,6 +7,7 @@ corner, an outline keeps the frame it was given in.
 from dataclasses import dataclass
 
 from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.drawn import DrawnDisc
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -26,12 +27,21 @@ class Piece:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class DiscKind:
-    """Discs of one diameter: the id they are asked for by, how many are wanted and how many are placed."""
+    """Discs of one make.
+
+    Attributes:
+        id: What they are asked for by.
+        diameter_mm: Of the rim.
+        wanted_count: How many are asked for.
+        placed_count: How many lie on sheets.
+        drawing: What is cut and marked of each; None for a plain circle.
+    """
 
     id: str
     diameter_mm: float
     wanted_count: int
     placed_count: int
+    drawing: DrawnDisc | None = None
 
     @property
     def missing_count(self) -> int:
@@ -82,7 +92,7 @@ class SheetPlan:
 
     Attributes:
         title: Of the job.
-        fingerprint: Of the job and the engine; the same job always gives the same.
+        fingerprint: Of the job, its drawings and the engine; the same always give the same.
         gap_mm: Least distance of two rims.
         kinds: What was asked for, in the job's order.
         sheets: The sheets that discs lie on, in the order they are used.

@@ -21,7 +21,7 @@ class Room:
         inside: The sheet without openings and clamp zones.
         start_mm: Shape (m, 2). Where each wall begins.
         end_mm: Shape (m, 2). Where it ends.
-        keep_mm: Shape (m,). What a rim keeps from it: the margin at edges, 0 at clamp zones.
+        keep_mm: Shape (m,). What a rim keeps from it: the margin at edges, what leads reach out at clamp zones.
         before: Shape (m,). Index of the wall that ends where it begins.
         lines_mm: The same walls by what a rim keeps from them, made ready to ask for distances.
     """
@@ -34,12 +34,13 @@ class Room:
     lines_mm: tuple[tuple[float, shapely.MultiLineString], ...]
 
 
-def room_of(stock: Stock, margin_mm: float) -> Room:
+def room_of(stock: Stock, margin_mm: float, clamps_mm: float = 0.0) -> Room:
     """The room of a sheet.
 
     Args:
         stock: The sheet.
         margin_mm: What rims keep from its edges and openings.
+        clamps_mm: What rims keep from its clamp zones.
     """
     sheet = orient(stock.shape())
     clamps = shapely.union_all(
@@ -48,7 +49,7 @@ def room_of(stock: Stock, margin_mm: float) -> Room:
     rings = [(ring, margin_mm) for ring in (sheet.exterior, *sheet.interiors)]
     for zone in getattr(clamps, "geoms", [clamps] if stock.clamps else []):
         around = orient(zone, sign=-1.0)  # clockwise, so that the free side is to the left
-        rings += [(ring, 0.0) for ring in (around.exterior, *around.interiors)]
+        rings += [(ring, clamps_mm) for ring in (around.exterior, *around.interiors)]
     cleaned = [(_corners_apart(shapely.get_coordinates(ring)[:-1]), keep) for ring, keep in rings]
     rings_mm = [(at, keep) for at, keep in cleaned if len(at) >= LEAST_CORNERS]  # fewer: a chink between two zones
     corners = [at for at, _ in rings_mm]

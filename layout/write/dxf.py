@@ -14,7 +14,7 @@ from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
 APP_ID = "DISCWRIGHT"  # under which lettering carries its words as extended data
 UNIT_SAID = {"R12": ("unit: mm; release R12 has no header variable for it",)}
-_STRING = 1000  # DXF reference: a string of extended data
+STRING = 1000  # DXF reference: a string of extended data
 
 
 def write_dxf(drawing: Drawing, cutter: Cutter) -> bytes:
@@ -53,7 +53,7 @@ def _add(space: Modelspace, entity: Entity, on_layer: dict[str, str]) -> None:
             bulges = rounded(entity.bulges, DECIMALS_BULGE).tolist()
             for points in rounded(entity.points_mm).tolist():
                 vertices = [(x, y, bulge) for (x, y), bulge in zip(points, bulges, strict=True)]
-                _polyline(space, vertices, on_layer, closed=entity.closed)
+                add_polyline(space, vertices, on_layer, closed=entity.closed)
         case Circles():
             centres = rounded(entity.centres_mm).tolist()
             for centre, radius_mm in zip(centres, rounded(entity.radius_mm).tolist(), strict=True):
@@ -63,15 +63,22 @@ def _add(space: Modelspace, entity: Entity, on_layer: dict[str, str]) -> None:
                 space.add_point(point, dxfattribs=on_layer)
         case Lettering():
             straight = [[(x, y, 0.0) for x, y in rounded(stroke).tolist()] for stroke in entity.strokes_mm]
-            lines = [_polyline(space, stroke, on_layer, closed=False) for stroke in straight]
+            lines = [add_polyline(space, stroke, on_layer, closed=False) for stroke in straight]
             for first in lines[:1]:
-                first.set_xdata(APP_ID, [(_STRING, dxf_text(entity.text, MOST_DXF_STRING))])
+                first.set_xdata(APP_ID, [(STRING, dxf_text(entity.text, MOST_DXF_STRING))])
 
 
-def _polyline(
+def add_polyline(
     space: Modelspace, vertices: list[tuple[float, float, float]], on_layer: dict[str, str], *, closed: bool
 ) -> Polyline | LWPolyline:
-    """One polyline of (x, y, bulge), as the document's release has them."""
+    """One polyline, as the document's release has them.
+
+    Args:
+        space: The model space of the document.
+        vertices: (x, y, bulge) of each.
+        on_layer: The attributes of the entity.
+        closed: Whether the last vertex joins the first.
+    """
     if space.dxfversion == DXF12:
         return space.add_polyline2d(vertices, format="xyb", close=closed, dxfattribs=on_layer)
     return space.add_lwpolyline(vertices, format="xyb", close=closed, dxfattribs=on_layer)

@@ -29,7 +29,10 @@ _DECIMAL_LENGTHS, _DECIMAL_DEGREES = 2, 0  # $LUNITS, $AUNITS
 _DECIMALS_SHOWN = 3  # $LUPREC, $AUPREC: what a drawing program shows, not what the file holds
 
 
-def new_document(extents_mm: FloatArray, release: Literal["R2010", "R12"] = "R2010") -> Drawing:
+Release = Literal["R2010", "R12"]
+
+
+def new_document(extents_mm: FloatArray, release: Release = "R2010") -> Drawing:
     """An empty document in millimetres, with nothing but the layer 0.
 
     Args:

@@ -1,23 +1,32 @@
-"""A sheet as a DXF file: its outline to lay it down by, and the rims to cut, in cutting order."""
+"""A sheet as a DXF file: its outline to lay it down by, and its discs to cut, one after the other."""
+
+from collections.abc import Iterator
 
 import numpy as np
+from ezdxf.layouts.layout import Modelspace
 
 from layout.documents.cutter import LAYER_COLOURS
 from layout.mechanics.arrays import FloatArray
-from layout.sheets.plan import Sheet, SheetPlan
-from layout.write.dxf_document import bytes_of, new_document
-from layout.write.numbers import rounded
+from layout.mechanics.drawn import DrawnCircle, DrawnDisc, DrawnEntity, DrawnLine, DrawnPoint
+from layout.sheets.plan import DiscKind, Sheet, SheetPlan
+from layout.write.dxf import APP_ID, STRING, UNIT_SAID, add_polyline
+from layout.write.dxf_document import Release, bytes_of, new_document
+from layout.write.numbers import DECIMALS_BULGE, rounded
+from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
 RIM, STOCK, CLAMPS = "RIM", "STOCK", "CLAMPS"
-# Colour indices (AutoCAD Color Index of the DXF reference); the last two are none of those of what is cut.
-_COLOURS = {RIM: LAYER_COLOURS[RIM], STOCK: 7, CLAMPS: 252}
+# Colour indices (AutoCAD Color Index of the DXF reference); those of stock and clamps are none of what is cut.
+_COLOURS = {STOCK: 7, CLAMPS: 252} | LAYER_COLOURS
 
 
 def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
-    """One sheet as an R2010 DXF file in millimetres, ASCII, the same bytes every time.
+    """One sheet as a DXF file in millimetres, ASCII, the same bytes every time.
 
-    The rims are circles on the layer RIM, in cutting order. The sheet with its openings stands on STOCK, zones
-    kept free on CLAMPS: neither is ever cut, and the head of the file says so. Only layers that occur are there.
+    Discs stand in cutting order, each whole: all of its drawing in the order it is drawn in, moved to its place and
+    neither turned nor mirrored, so that every vertex stays exact, folds keep their way to the rolling of the sheet,
+    and marks read as on the disc alone. A disc without a drawing is a circle on the layer RIM. The sheet with its
+    openings stands on STOCK, zones kept free on CLAMPS: neither is ever cut, and the head of the file says so. Only
+    layers that occur are there. The release is R2010, or R12 where a drawing on the sheet is of that release.
 
     Args:
         plan: The plan.
@@ -27,16 +36,60 @@ def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
     rings = (sheet.piece.outline_mm, *sheet.piece.openings_mm)
     zones = [_around(zone) for zone in sheet.clamps_mm]
     corners = np.concatenate([*rings, *zones])
-    document = new_document(rounded(np.array([corners.min(axis=0), corners.max(axis=0)])))
-    for layer in (STOCK, *([CLAMPS] if zones else []), RIM):
+    kinds = [plan.kinds[kind] for kind in dict.fromkeys(sheet.kind.tolist())]
+    release = _release(kinds)
+    document = new_document(rounded(np.array([corners.min(axis=0), corners.max(axis=0)])), release)
+    for layer in (STOCK, *([CLAMPS] if zones else []), *_layers_of(kinds)):
         document.layers.add(layer, color=_COLOURS[layer])
+    if any(isinstance(each, DrawnLine) and each.words for drawn in _drawings(kinds) for each in drawn.entities):
+        document.appids.add(APP_ID)
     space = document.modelspace()
     for layer, outlines in ((STOCK, rings), (CLAMPS, zones)):
         for outline in outlines:
-            space.add_lwpolyline(rounded(outline), close=True, dxfattribs={"layer": layer})
-    for centre, radius_mm in zip(rounded(sheet.centres_mm), rounded(sheet.radius_mm).tolist(), strict=True):
-        space.add_circle(centre, radius_mm, dxfattribs={"layer": RIM})
-    return bytes_of(document, _comments(plan, sheet, number))
+            straight = [(x, y, 0.0) for x, y in rounded(outline).tolist()]
+            add_polyline(space, straight, {"layer": layer}, closed=True)
+    placed = zip(sheet.kind.tolist(), rounded(sheet.centres_mm), rounded(sheet.radius_mm).tolist(), strict=True)
+    for kind, centre_mm, radius_mm in placed:
+        _add_disc(space, plan.kinds[kind].drawing, centre_mm, radius_mm)
+    return bytes_of(document, (*_comments(plan, sheet, number), *_of_the_drawings(kinds), *UNIT_SAID.get(release, ())))
+
+
+def _drawings(kinds: list[DiscKind]) -> Iterator[DrawnDisc]:
+    return (kind.drawing for kind in kinds if kind.drawing is not None)
+
+
+def _release(kinds: list[DiscKind]) -> Release:
+    return "R12" if any(drawn.release == "R12" for drawn in _drawings(kinds)) else "R2010"
+
+
+def _layers_of(kinds: list[DiscKind]) -> list[str]:
+    """Our layers that the discs use, in the order of the table."""
+    used = {entity.layer for drawn in _drawings(kinds) for entity in drawn.entities} | {RIM}
+    return [layer for layer in LAYER_COLOURS if layer in used]
+
+
+def _add_disc(space: Modelspace, drawn: DrawnDisc | None, centre_mm: FloatArray, radius_mm: float) -> None:
+    if drawn is None:
+        space.add_circle(centre_mm, radius_mm, dxfattribs={"layer": RIM})
+        return
+    for entity in drawn.entities:
+        _add_moved(space, entity, centre_mm)
+
+
+def _add_moved(space: Modelspace, entity: DrawnEntity, by_mm: FloatArray) -> None:
+    on_layer = {"layer": entity.layer}
+    match entity:
+        case DrawnCircle():
+            space.add_circle(rounded(entity.centre_mm + by_mm), entity.radius_mm, dxfattribs=on_layer)
+        case DrawnPoint():
+            space.add_point(rounded(entity.at_mm + by_mm), dxfattribs=on_layer)
+        case DrawnLine():
+            places = rounded(entity.points_mm + by_mm).tolist()
+            bulges = rounded(entity.bulge_ratio, DECIMALS_BULGE).tolist()
+            vertices = [(x, y, bulge) for (x, y), bulge in zip(places, bulges, strict=True)]
+            line = add_polyline(space, vertices, on_layer, closed=entity.closed)
+            if entity.words:
+                line.set_xdata(APP_ID, [(STRING, dxf_text(entity.words, MOST_DXF_STRING))])
 
 
 def _around(zone: FloatArray) -> FloatArray:
@@ -46,12 +99,34 @@ def _around(zone: FloatArray) -> FloatArray:
 
 def _comments(plan: SheetPlan, sheet: Sheet, number: int) -> tuple[str, ...]:
     lot = f", lot {sheet.lot}" if sheet.lot else ""
+    drawn = any(plan.kinds[kind].drawing is not None for kind in sheet.kind.tolist())
+    what = (
+        "Cut in the order of the file, disc by disc: each is marked, cut inside and cut free before the next. "
+        "MARKS are marked and never cut through."
+        if drawn
+        else "Cut RIM alone, in the order of the file."
+    )
     return (
         f"{plan.title}: sheet {number} of {len(plan.sheets)}, from {sheet.stock}{lot}; {len(sheet.kind)} discs; "
-        "millimetres, nominal rims without kerf",
-        "Cut RIM alone, in the order of the file. STOCK is the sheet's own edge and CLAMPS are zones kept free: "
-        "never cut them.",
+        f"millimetres, {'discs as drawn, see below' if drawn else 'nominal rims without kerf'}",
+        f"{what} STOCK is the sheet's own edge and CLAMPS are zones kept free: never cut them.",
         f"Cutting begins at the {sheet.cut_from} and goes across the sheet in strips, so what is not cut yet "
         "stays in one piece. Discs that are cut free may tip: keep to the rules of the machine and the shop.",
         f"job {plan.fingerprint}",
     )
+
+
+def _of_the_drawings(kinds: list[DiscKind]) -> Iterator[str]:
+    """What the heads of the discs' drawings say: each disc's own, then what all share."""
+    drawings = list(_drawings(kinds))
+    for kind in kinds:
+        if kind.drawing is None:
+            if drawings:
+                yield f"disc {kind.id}: a plain circle, nominal rim without kerf"
+        else:
+            title, fingerprint = kind.drawing.title or "untitled", kind.drawing.fingerprint or "unknown"
+            yield f"disc {kind.id}: {title}; fingerprint {fingerprint}"
+    for told in zip(*((drawn.blank, drawn.side, drawn.kerf) for drawn in drawings), strict=True):
+        yield from dict.fromkeys(line for line in told if line)
+    if any(isinstance(each, DrawnPoint) for drawn in drawings for each in drawn.entities):
+        yield "hits: one point for each projection, struck about its own disc's centre, which parts.csv tells"

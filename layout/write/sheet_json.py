@@ -2,14 +2,13 @@
 
 from typing import Any
 
-from layout.check.finding import Level
+from layout.check.finding import Code, Level
 from layout.sheets.plan import DiscKind, Piece, Sheet, SheetPlan
 from layout.version import ENGINE_VERSION
 from layout.write.json_lines import json_lines
 from layout.write.numbers import rounded
 
 FORMAT = "discwright-sheet-plan/1"
-NOT_PLACED = "disc-not-placed"
 _PERCENT = 100
 _DECIMALS_PERCENT, _DECIMALS_AREA = 2, 1
 Record = dict[str, Any]  # JSON: what it holds is said by sheets_record
@@ -28,7 +27,8 @@ def sheets_record(plan: SheetPlan) -> Record:
     """The plan in plain dictionaries and lists, in the order it is written.
 
     Discs stand in cutting order. The outline and openings of a remnant can stand in the stock of another job as
-    they are. Lengths are in millimetres to a nanometre.
+    they are. `drawing` is what the head of a disc's drawing tells, "" where it does not; null for a
+    plain circle. Lengths are in millimetres to a nanometre.
 
     Args:
         plan: The plan.
@@ -47,6 +47,9 @@ def sheets_record(plan: SheetPlan) -> Record:
                 "wanted": kind.wanted_count,
                 "placed": kind.placed_count,
                 "not_placed": kind.missing_count,
+                "drawing": None
+                if kind.drawing is None
+                else {"title": kind.drawing.title, "fingerprint": kind.drawing.fingerprint},
             }
             for kind in plan.kinds
         ],
@@ -98,7 +101,7 @@ def _not_placed(plan: SheetPlan, kind: DiscKind) -> Record:
     """What could not be placed of one kind, as every finding is written."""
     missing = f"{kind.missing_count} of {kind.wanted_count} discs {kind.id} ({kind.diameter_mm:g} mm)"
     return {
-        "code": NOT_PLACED,
+        "code": Code.DISC_NOT_PLACED.value,
         "level": Level.ERROR.value,
         "message": f"{missing} fit on no sheet; {len(plan.sheets)} sheets are used, {plan.untouched_count} are left.",
         "measured": kind.placed_count,

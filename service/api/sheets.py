@@ -1,20 +1,42 @@
-"""/v1/sheets: a sheet job becomes a plan of discs on stock, or its drawings and part list in one archive."""
+"""/v1/sheets: a sheet job becomes a plan of discs on stock, or its drawings and part list in one archive.
+
+The job is the body as JSON, or the part `job` of a multipart form. In a form, discs may have drawings: the part
+`drawing-ID` is the disc.dxf of the disc with that id in the job. A disc without a drawing is a plain circle.
+"""
+
+import re
+from dataclasses import dataclass, field
 
 from flask import Blueprint, Request, Response, request
 
-from layout.documents.sheets import read_sheet_job
+from layout.documents.sheets import LIMITS, read_sheet_job
 from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
 from layout.sheets.plan import SheetPlan
 from service.api.answers import JSON_MEDIA_TYPE
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.download_names import slug
 from service.api.failures import too_large
+from service.api.multipart import parts_of
 from service.api.parameters import read_query
 from service.api.problems import ProblemError
 from service.limits import Limits
 
 ANSWERS = (JSON_MEDIA_TYPE, ZIP_MEDIA_TYPE)
+FORM_MEDIA_TYPE = "multipart/form-data"
+MEDIA_TYPES = (JSON_MEDIA_TYPE, FORM_MEDIA_TYPE)
+JOB_PART, DRAWING_PART = "job", "drawing-"
 LONGEST_TITLE = 40  # characters of a file name
+# What a part of a drawing may be called; the form's reader takes listed names alone.
+_DRAWING_NAMED = re.compile(rb'name="?(drawing-[a-z][a-z0-9-]{0,63})"?')
+_MOST_PARTS = 1 + LIMITS.disc_kinds
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Posted:
+    """The sheet job as it was sent, and the drawings by the id of their disc."""
+
+    job: bytes
+    drawings: dict[str, bytes] = field(default_factory=dict)
 
 
 def sheet_routes(limits: Limits) -> Blueprint:
@@ -29,7 +51,8 @@ def sheet_routes(limits: Limits) -> Blueprint:
     def make_sheets() -> Response:
         media_type = _answer_wanted(request)
         read_query(request.args, known=(), most_reason_characters=limits.reason_characters)
-        plan = plan_sheets(read_sheet_job(_posted(request, limits)))
+        posted = _posted(request, limits)
+        plan = plan_sheets(read_sheet_job(posted.job), posted.drawings)
         files = sheet_files_of(plan)
         if media_type == ZIP_MEDIA_TYPE:
             response = Response(archive_of(files), content_type=ZIP_MEDIA_TYPE)
@@ -57,21 +80,50 @@ def _answer_wanted(asked: Request) -> str:
     return best
 
 
-def _posted(asked: Request, limits: Limits) -> bytes:
-    """The sheet job as it was sent."""
+def _posted(asked: Request, limits: Limits) -> _Posted:
+    """What was sent.
+
+    Raises:
+        ProblemError: The body or the job is too large, of another media type, or cannot be taken apart.
+    """
     coding = asked.headers.get("Content-Encoding", "identity").strip().lower()
-    if asked.mimetype != JSON_MEDIA_TYPE or coding != "identity":
+    if asked.mimetype not in MEDIA_TYPES or coding != "identity":
         sent = repr(asked.mimetype) if coding == "identity" else f"a body packed as {coding!r}"
         raise ProblemError(
             name="media-type-unsupported",
-            detail=f"{sent} is not taken; a sheet job is sent as {JSON_MEDIA_TYPE}, unpacked",
-            more={"allowed_types": [JSON_MEDIA_TYPE]},
-            headers={"Accept-Post": JSON_MEDIA_TYPE, "Accept-Encoding": "identity"},
+            detail=f"{sent} is not taken; a sheet job is sent as {JSON_MEDIA_TYPE}, or with the drawings of its discs "
+            f"as {FORM_MEDIA_TYPE}, unpacked",
+            more={"allowed_types": list(MEDIA_TYPES)},
+            headers={"Accept-Post": ", ".join(MEDIA_TYPES), "Accept-Encoding": "identity"},
         )
-    body = asked.get_data()  # up to one byte more than the app's limit, which may be the larger
-    if len(body) > limits.document_bytes:
+    posted = _Posted(job=asked.get_data()) if asked.mimetype == JSON_MEDIA_TYPE else _from_form(asked, limits)
+    if len(posted.job) > limits.document_bytes:
         raise too_large(limits.document_bytes, "the sheet job")
-    return body
+    return posted
+
+
+def _from_form(asked: Request, limits: Limits) -> _Posted:
+    asked.max_content_length = limits.sheet_form_bytes + 1  # one more, to see that it is too large
+    too_long = (asked.content_length or 0) > limits.sheet_form_bytes
+    body = b"" if too_long else asked.get_data()
+    if too_long or len(body) > limits.sheet_form_bytes:
+        raise too_large(limits.sheet_form_bytes, "the form with the sheet job and its drawings")
+    named = sorted({name.decode("ascii") for name in _DRAWING_NAMED.findall(body)})
+    parts = parts_of(
+        body,
+        boundary=asked.mimetype_params.get("boundary"),
+        known=(JOB_PART, *named) if named else (JOB_PART, f"{DRAWING_PART}ID"),
+        most_parts=_MOST_PARTS,
+    )
+    if JOB_PART not in parts:
+        raise ProblemError(
+            name="parameter-missing",
+            detail=f"the form has no part {JOB_PART}; it is the sheet job, beside parts {DRAWING_PART}ID for the "
+            "drawings of its discs",
+            more={"parameter": JOB_PART},
+        )
+    job = parts.pop(JOB_PART)
+    return _Posted(job=job, drawings={name.removeprefix(DRAWING_PART): dxf for name, dxf in parts.items()})
 
 
 def _archive_name(plan: SheetPlan) -> str:

@@ -15,17 +15,21 @@ from service.commands.files_in import read_file
 from service.commands.files_out import write_folders
 from service.commands.findings import finding_lines
 from service.commands.output import aligned, say, say_json
+from service.limits import Limits
 
 ABOUT = (
     "Lay many discs on stock: sheets and remnants of any outline, with gaps, margins and clamp zones. The job is a "
     "JSON document. Writes sheets.json (the plan, for programs), parts.csv (where every disc lies) and one drawing of "
     "every sheet, sheet-1.dxf and so on, rims on the layer RIM in cutting order; drawings of an earlier run that this "
-    "one does not replace are removed. Ends with 0 where every disc is placed, with 3 where some fit on no sheet (the "
-    "others are written all the same), with 2 where the job cannot be used (nothing is written)."
+    "one does not replace are removed. A disc is a plain circle, or with --drawing ID=disc.dxf all that its drawing "
+    "cuts and marks. Ends with 0 where every disc is placed, with 3 where some fit on no sheet (the "
+    "others are written all the same), with 2 where the job or a drawing cannot be used (nothing is written)."
 )
 EXAMPLE = """example:
   discwright sheets JOB.json --out cut
-      writes cut/sheet-1.dxf and the others, and says how well each sheet is used"""
+      writes cut/sheet-1.dxf and the others, and says how well each sheet is used
+  discwright sheets JOB.json --drawing dance=dance/disc.dxf --out cut
+      the same, and every disc that the job calls dance is cut as dance/disc.dxf draws it"""
 DRAWING = re.compile(r"sheet-[1-9][0-9]*\.dxf")
 
 
@@ -33,6 +37,14 @@ def add_arguments(parser: OneLineParser) -> None:
     """Add the arguments of this subcommand."""
     parser.add_argument("job", type=Path, metavar="JOB.json", help="the sheet job: stock and discs")
     parser.add_argument("--out", type=folder, required=True, metavar="DIR", help="the folder for the files")
+    parser.add_argument(
+        "--drawing",
+        type=_named,
+        action="append",
+        default=[],
+        metavar="ID=disc.dxf",
+        help="the drawing of the discs that the job calls ID, for cutting; can be given for every disc",
+    )
     add_json(parser)
 
 
@@ -41,11 +53,12 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
 
     Raises:
         CommandError: A file cannot be read or written.
-        LayoutError: The job cannot be used.
+        LayoutError: The job or a drawing cannot be used.
     """
     job = read_sheet_job(read_file(asked.job, what="the sheet job", most_bytes=tools.limits.document_bytes))
+    drawings = _drawings(asked.drawing, tools.limits)
     _check_own(asked.out)
-    plan = plan_sheets(job)
+    plan = plan_sheets(job, drawings)
     files = sheet_files_of(plan)
     removed = _without_stale(asked.out, files)
     write_folders({asked.out: files})
@@ -58,6 +71,27 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
         say([f"written to {asked.out}: {', '.join(files)}"])
         say([f"removed from {asked.out}, as they were of an earlier job: {', '.join(removed)}"] if removed else [])
     return GOOD if plan.complete else ERROR_STANDS
+
+
+def _named(text: str) -> tuple[str, Path]:
+    """The id and the path of an argument ID=PATH.
+
+    Raises:
+        ArgumentTypeError: It is not of that form.
+    """
+    disc_id, equals, path = text.partition("=")
+    if not (disc_id and equals and path):
+        raise argparse.ArgumentTypeError(f"{text!r} names no disc and drawing; write ID=disc.dxf")
+    return disc_id, Path(path)
+
+
+def _drawings(named: list[tuple[str, Path]], limits: Limits) -> dict[str, bytes]:
+    drawings: dict[str, bytes] = {}
+    for disc_id, path in named:
+        if disc_id in drawings:
+            raise CommandError(f"two drawings are given for {disc_id!r}; give one")
+        drawings[disc_id] = read_file(path, what=f"the drawing of {disc_id}", most_bytes=limits.drawing_bytes)
+    return drawings
 
 
 def _check_own(out: Path) -> None:

@@ -96,7 +96,14 @@ def test_what_is_not_placed_is_a_finding_with_its_numbers() -> None:
     told = json.loads(files(TWO_SHEETS)["sheets.json"])
 
     assert not told["complete"]
-    assert told["discs"][1] == {"disc": "d2", "diameter_mm": 700, "wanted": 2, "placed": 0, "not_placed": 2}
+    assert told["discs"][1] == {
+        "disc": "d2",
+        "diameter_mm": 700,
+        "wanted": 2,
+        "placed": 0,
+        "not_placed": 2,
+        "drawing": None,
+    }
     [finding] = told["findings"]
     assert finding["code"] == "disc-not-placed"
     assert finding["level"] == "error"

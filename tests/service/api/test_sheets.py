@@ -8,6 +8,7 @@ import ezdxf
 import pytest
 
 from service.limits import Limits
+from tests.layout.sheets.drawn import FINGERPRINT, RIM_MM, disc_dxf, entities_of, record_dxf
 from tests.service.fakes import Client, FakePlanner, client_of
 
 JOB: dict[str, Any] = {
@@ -96,7 +97,7 @@ def test_a_body_of_another_kind_is_refused(client: Client, headers: dict[str, st
 
     assert answer.status_code == 415
     assert seen in answer.json["detail"]
-    assert answer.json["allowed_types"] == ["application/json"]
+    assert answer.json["allowed_types"] == ["application/json", "multipart/form-data"]
 
 
 def test_an_answer_that_cannot_be_given_is_refused_with_what_can(client: Client) -> None:
@@ -127,3 +128,126 @@ def test_a_parameter_is_unknown_here(client: Client) -> None:
 
 def test_only_posting_makes_sheets(client: Client) -> None:
     assert client.get("/v1/sheets").status_code == 405
+
+
+FORM = "multipart/form-data; boundary=x"
+DISC = disc_dxf()
+DRAWN_JOB = JOB | {"discs": [{"id": "dance", "diameter_mm": RIM_MM, "quantity": 4}]}
+
+
+def post_form(client: Client, parts: list[tuple[str, bytes]], **headers: str) -> Any:
+    sent = {name.replace("_", "-"): value for name, value in headers.items()}
+    return client.http.post("/v1/sheets", data=form_of(parts), content_type=FORM, headers=sent)
+
+
+def form_of(parts: list[tuple[str, bytes]]) -> bytes:
+    """A multipart body as RFC 7578 has it."""
+    head = b'--x\r\nContent-Disposition: form-data; name="%s"; filename="disc.dxf"\r\n\r\n'
+    return b"".join(head % name.encode() + content + b"\r\n" for name, content in parts) + b"--x--\r\n"
+
+
+def job_part(job: Any = DRAWN_JOB) -> tuple[str, bytes]:
+    return "job", json.dumps(job).encode()
+
+
+def test_a_form_brings_the_drawings_of_discs(client: Client) -> None:
+    answer = post_form(client, [job_part(), ("drawing-dance", DISC)], Accept="application/zip")
+
+    assert answer.status_code == 200
+    archive = zipfile.ZipFile(io.BytesIO(answer.data))
+    drawn = entities_of(archive.read("sheet-1.dxf"))
+    assert sum(layer == "RIM" for layer, *_ in drawn) == 3
+    assert sum(layer == "SLITS" for layer, *_ in drawn) == 3 * sum(layer == "SLITS" for layer, *_ in entities_of(DISC))
+    plan = json.loads(archive.read("sheets.json"))
+    assert plan["discs"][0]["drawing"] == {"title": "Spring dance", "fingerprint": FINGERPRINT}
+
+
+def test_a_form_without_drawings_is_the_job_alone(client: Client) -> None:
+    assert post_form(client, [job_part(JOB)]).json == post(client, JOB).json
+
+
+@pytest.mark.parametrize(
+    ("dxf", "detail"),
+    [
+        (record_dxf(), "drawing of dance: (whole document): this is a record, for reading, never for cutting"),
+        (
+            disc_dxf(not_good="a gift"),
+            "drawing of dance: (whole document): the file itself says NOT GOOD TO CUT: a gift",
+        ),
+        (b"\x00\xff" * 999, "drawing of dance: (whole document): not a DXF file that can be read"),
+        (b"", "drawing of dance: (whole document): the file is empty; give a DXF file"),
+        (b"0" * (9 * 2**19), "sheet job: /discs: the drawings are 4.5 MiB, 4 are allowed; make several jobs of it"),
+    ],
+    ids=["record", "not good", "no drawing", "empty", "large"],
+)
+def test_a_drawing_that_cannot_be_placed_is_a_problem_that_names_its_disc(
+    client: Client, dxf: bytes, detail: str
+) -> None:
+    answer = post_form(client, [job_part(), ("drawing-dance", dxf)])
+
+    assert answer.status_code == 422
+    assert answer.json["type"] == "/problems/document-invalid"
+    assert answer.json["detail"].startswith(detail)
+
+
+def test_a_drawing_of_a_disc_that_the_job_does_not_have_is_a_problem(client: Client) -> None:
+    answer = post_form(client, [job_part(), ("drawing-waltz", DISC)])
+
+    assert answer.status_code == 422
+    assert answer.json["invalid_params"] == [
+        {
+            "pointer": "/discs",
+            "detail": "a drawing is given for 'waltz', which is none of the job's discs; they are dance",
+        }
+    ]
+
+
+def test_a_form_without_a_job_is_a_problem(client: Client) -> None:
+    answer = post_form(client, [("drawing-dance", DISC)])
+
+    assert answer.status_code == 400
+    assert answer.json["parameter"] == "job"
+    assert answer.json["detail"] == (
+        "the form has no part job; it is the sheet job, beside parts drawing-ID for the drawings of its discs"
+    )
+
+
+@pytest.mark.parametrize("name", ["cutter", "drawing", "drawing-", "drawing-Dance", "drawing-../x"])
+def test_a_part_of_another_name_is_a_problem(client: Client, name: str) -> None:
+    answer = post_form(client, [job_part(), (name, DISC)])
+
+    assert answer.status_code == 400
+    assert answer.json["detail"] == f"there is no part called {name!r}; the parts are job, drawing-ID"
+
+
+def test_a_part_that_comes_twice_is_a_problem(client: Client) -> None:
+    answer = post_form(client, [job_part(), ("drawing-dance", DISC), ("drawing-dance", DISC)])
+
+    assert answer.status_code == 400
+    assert answer.json["detail"] == "the part drawing-dance comes twice; send it once"
+
+
+def test_a_form_that_is_none_is_a_problem(client: Client) -> None:
+    answer = client.http.post("/v1/sheets", data=b"--y", content_type=FORM)
+
+    assert answer.status_code == 400
+    assert answer.json["type"] == "/problems/multipart-unreadable"
+
+
+def test_a_form_may_be_larger_than_other_bodies_up_to_its_own_limit(planner: FakePlanner, tmp_path: Path) -> None:
+    client = client_of(planner, tmp_path, Limits(upload_bytes=1000, sheet_form_bytes=100_000))
+
+    assert len(DISC) > 1000
+    assert post_form(client, [job_part(), ("drawing-dance", DISC)]).status_code == 200
+    answer = post_form(client, [job_part(), ("drawing-dance", DISC + b" " * 100_000)])
+    assert answer.status_code == 413
+    assert answer.json["limit_bytes"] == 100_000
+    assert answer.json["detail"] == "the form with the sheet job and its drawings is larger than 100000 bytes"
+
+
+def test_the_limits_of_sheet_jobs_are_told(client: Client) -> None:
+    told = {limit["name"]: limit for limit in client.get("/v1/limits").json["limits"]}
+
+    assert told["sheet_job_drawing_mib"]["value"] == 4
+    assert told["sheet_job_discs"]["value"] == 2000
+    assert told["sheet_form_bytes"]["unit"] == "bytes"

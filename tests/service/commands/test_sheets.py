@@ -4,6 +4,7 @@ from typing import Any
 
 import pytest
 
+from tests.layout.sheets.drawn import RIM_MM, disc_dxf, entities_of, record_dxf
 from tests.service.commands.conftest import Discwright
 
 JOB: dict[str, Any] = {
@@ -120,3 +121,81 @@ def test_the_cutting_files_of_a_disc_are_never_touched(
     assert code == 2
     assert [path.name for path in out.iterdir()] == ["disc.dxf"]
     assert "holds disc.dxf of a disc; choose another --out" in capsys.readouterr().err
+
+
+DISC = disc_dxf()
+DRAWN = [{"id": "dance", "diameter_mm": RIM_MM, "quantity": 2}, {"id": "plain", "diameter_mm": 100, "quantity": 1}]
+
+
+@pytest.fixture
+def disc(tmp_path: Path) -> Path:
+    path = tmp_path / "disc.dxf"
+    path.write_bytes(DISC)
+    return path
+
+
+def test_a_disc_is_cut_as_its_drawing_says_and_one_without_stays_a_circle(
+    discwright: Discwright, job: Path, disc: Path, tmp_path: Path
+) -> None:
+    out = tmp_path / "cut"
+
+    code = discwright("sheets", changed(job, discs=DRAWN), "--drawing", f"dance={disc}", "--out", out)
+
+    assert code == 0
+    drawn = entities_of((out / "sheet-1.dxf").read_bytes())
+    assert sum(layer == "RIM" for layer, *_ in drawn) == 3
+    assert sum(layer == "SLITS" for layer, *_ in drawn) == 2 * sum(layer == "SLITS" for layer, *_ in entities_of(DISC))
+
+
+@pytest.mark.parametrize("named", ["dance", "=disc.dxf", "dance=", ""])
+def test_a_drawing_without_its_disc_is_told(
+    discwright: Discwright, job: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str], named: str
+) -> None:
+    code = discwright("sheets", job, "--drawing", named, "--out", tmp_path / "cut")
+
+    assert code == 2
+    assert f"argument --drawing: {named!r} names no disc and drawing; write ID=disc.dxf" in capsys.readouterr().err
+
+
+def test_two_drawings_of_one_disc_are_told(
+    discwright: Discwright, job: Path, disc: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    twice = ("--drawing", f"dance={disc}", "--drawing", f"dance={disc}")
+
+    code = discwright("sheets", changed(job, discs=DRAWN), *twice, "--out", tmp_path / "cut")
+
+    assert code == 2
+    assert capsys.readouterr().err == "discwright: two drawings are given for 'dance'; give one\n"
+
+
+@pytest.mark.parametrize(
+    ("content", "told"),
+    [
+        (None, "discwright: the drawing of dance "),
+        (b"", "discwright: drawing of dance: (whole document): the file is empty; give a DXF file\n"),
+        (
+            record_dxf(),
+            "discwright: drawing of dance: (whole document): this is a record, for reading, never for cutting",
+        ),
+    ],
+    ids=["missing", "empty", "record"],
+)
+def test_a_drawing_that_cannot_be_placed_is_told_and_nothing_is_written(
+    discwright: Discwright,
+    job: Path,
+    tmp_path: Path,
+    capsys: pytest.CaptureFixture[str],
+    content: bytes | None,
+    told: str,
+) -> None:
+    path = tmp_path / "drawing.dxf"
+    if content is not None:
+        path.write_bytes(content)
+
+    code = discwright("sheets", changed(job, discs=DRAWN), "--drawing", f"dance={path}", "--out", tmp_path / "cut")
+
+    assert code == 2
+    assert not (tmp_path / "cut").exists()
+    said = capsys.readouterr().err
+    assert said.startswith(told)
+    assert said.count("\n") == 1
