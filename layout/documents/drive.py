@@ -9,6 +9,18 @@ from layout.documents.reading import Length, NotNegative, Part, Positive
 MOST_TURNS = 100.0  # turns; a barrel has a handful
 MOST_STAGES = 12  # stages of a train; clockwork has up to six
 MOST_PARTS = 32  # turning parts of a train, each stated with its inertia
+# Far outside any clockwork, and near enough that products of twelve stages stay numbers.
+LEAST_STAGE, MOST_STAGE = 1e-3, 1e3  # turns per turn; clockwork has 1/12 to 12
+MOST_TRAIN = 1e6  # turns of a part per turn of the disc; a brake makes some thousand
+LEAST_TURNS = 0.01  # turns; a spring wound less drives nothing
+LEAST_EFFICIENCY = 0.01  # a train that loses more stands still
+LEAST_MODULUS, MOST_MODULUS = (
+    1e3,
+    1e6,
+)  # N/mm²; plastics to diamond, steel has 2e5
+LEAST_SPRING_MM, MOST_SPRING_MM = 1.0, 1e6  # mm of strip; a large barrel holds some metres
+
+StageRatio = Annotated[Positive, Field(ge=LEAST_STAGE, le=MOST_STAGE)]
 
 
 class Spring(Part):
@@ -18,12 +30,12 @@ class Spring(Part):
     of those the barrel gives before the stop, or before the spring is let down no further.
     """
 
-    elastic_modulus_n_per_mm2: Positive
+    elastic_modulus_n_per_mm2: Annotated[Positive, Field(ge=LEAST_MODULUS, le=MOST_MODULUS)]
     width_mm: Length
     thickness_mm: Length
-    length_mm: Positive
-    wound_turns: Annotated[Positive, Field(le=MOST_TURNS)]
-    usable_turns: Annotated[Positive, Field(le=MOST_TURNS)]
+    length_mm: Annotated[Positive, Field(ge=LEAST_SPRING_MM, le=MOST_SPRING_MM)]
+    wound_turns: Annotated[Positive, Field(ge=LEAST_TURNS, le=MOST_TURNS)]
+    usable_turns: Annotated[Positive, Field(ge=LEAST_TURNS, le=MOST_TURNS)]
 
     @model_validator(mode="after")
     def _usable_are_wound(self) -> Self:
@@ -41,10 +53,10 @@ class Winding(Part):
     """
 
     spring: Spring
-    barrel_to_disc: Annotated[tuple[Positive, ...], Field(min_length=1, max_length=MOST_STAGES)]
-    disc_to_brake: Annotated[tuple[Positive, ...], Field(max_length=MOST_STAGES)] = ()
+    barrel_to_disc: Annotated[tuple[StageRatio, ...], Field(min_length=1, max_length=MOST_STAGES)]
+    disc_to_brake: Annotated[tuple[StageRatio, ...], Field(max_length=MOST_STAGES)] = ()
     brake_turns_per_s: Positive | None = None
-    efficiency: Annotated[float, Field(gt=0, le=1)] | None = None
+    efficiency: Annotated[float, Field(ge=LEAST_EFFICIENCY, le=1)] | None = None
     friction_nmm: NotNegative | None = None
 
 
@@ -52,7 +64,7 @@ class TrainStage(Part):
     """One turning part of the gear train, with its turns per turn of the disc."""
 
     inertia_kg_m2: Positive
-    ratio: Positive
+    ratio: Annotated[Positive, Field(le=MOST_TRAIN)]
 
 
 class Drive(Part):

@@ -183,3 +183,23 @@ def test_an_unknown_id_names_the_ids_there_are() -> None:
 def test_a_whole_number_longer_than_any_is_refused_in_our_words() -> None:
     with pytest.raises(DocumentError, match="not JSON: a number of 10000 digits; 400 are the most"):
         read_movement('{"revision": ' + 10_000 * "9" + "}")
+
+
+@pytest.mark.parametrize(
+    ("field", "value"),
+    [
+        ("barrel_to_disc", [1e9]),
+        ("barrel_to_disc", [0.0001]),
+        ("disc_to_brake", [1001]),
+        ("efficiency", 0.001),
+        ("spring/length_mm", 0.5),
+        ("spring/elastic_modulus_n_per_mm2", 999),
+        ("spring/wound_turns", 0.001),
+    ],
+)
+def test_numbers_of_a_winding_far_outside_any_clockwork_are_refused(field: str, value: object) -> None:
+    changes = {"drive": {"winding": {"spring": OVERDRAWN | {"usable_turns": 0.001}, "barrel_to_disc": [4]}}}
+    text = json.dumps(document_with({f"drive/winding/{field}": value}, document_with(changes)))
+
+    with pytest.raises(DocumentError, match=f"/drive/winding/{field}"):
+        read_movement(text)
