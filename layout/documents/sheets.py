@@ -19,9 +19,7 @@ LEAST_REMNANT_MM = 100.0  # mm; unless the job says otherwise: a hand's width, w
 class SheetLimits:
     """How large a sheet job may be; each keeps the time it takes, and the files it gives, within reason."""
 
-    stock_kinds: int = limit(
-        32, "kinds", "most entries of stock: a rack of remnants; each takes up to a second and more"
-    )
+    stock_kinds: int = limit(32, "kinds", "most entries of stock: a rack of remnants; each takes up to about a second")
     sheets: int = limit(200, "sheets", "most sheets of all kinds together; each gives a drawing")
     disc_kinds: int = limit(24, "kinds", "most entries of discs: each is placed in turn on every sheet")
     discs: int = limit(
@@ -32,9 +30,9 @@ class SheetLimits:
     clamps: int = limit(20, "zones", "most clamp zones of a sheet: more than a bed has clamps")
     drawing_mib: int = limit(4, "MiB", "all drawings of a job together; to read that much takes seven seconds")
     drawn_vertices: int = limit(
-        200_000,
+        500_000,
         "vertices",
-        "most vertices of the drawings of all discs together: 50 of 4000 each; to write that much takes 12 seconds",
+        "most vertices of the drawings of all discs together: 125 of 4000 each; to write that much takes ten seconds",
     )
     longest_mm: int = limit(6000, "mm", "farthest a sheet may reach: above the largest plates that are traded")
 

@@ -6,6 +6,8 @@ import numpy as np
 
 from layout.mechanics.arrays import FloatArray
 
+STRAIGHT_RATIO = 1e-9  # bulge; an arc on a chord of 2 m is then a nanometre high, and its radius could overflow
+
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class DrawnLine:
@@ -124,5 +126,6 @@ _Complex = np.ndarray[tuple[int], np.dtype[np.complex128]]
 
 def _arcs(line: DrawnLine, at: _Complex) -> tuple[_Complex, _Complex, FloatArray]:
     """Start, chord and bulge of the arcs of a line."""
-    pieces = np.flatnonzero(line.bulge_ratio if line.closed else line.bulge_ratio[:-1])
+    bent = np.abs(line.bulge_ratio) > STRAIGHT_RATIO
+    pieces = np.flatnonzero(bent if line.closed else bent[:-1])
     return at[pieces], at[(pieces + 1) % len(at)] - at[pieces], line.bulge_ratio[pieces]

@@ -33,8 +33,7 @@ PLACED_LAYERS = tuple(name for name in LAYER_COLOURS if name not in RECORD_LAYER
 _AFTER_THE_RIM = ("RIM", "LEADS")
 _WARNINGS = ("NOT GOOD TO CUT", "NOT FOR CUTTING")  # as they are lettered and stand in the head
 _APP_ID, _STRING = "DISCWRIGHT", 1000  # under which lettering carries its words; DXF reference: group of a string
-_CURVE_FITTED = 1 | 2 | 4 | 8 | 16 | 32 | 64  # DXF reference, group 70 of POLYLINE: closed, fitted, splined, 3D, mesh
-_CLOSED = 1
+_NOT_PLAIN = 2 | 4 | 8 | 16 | 32 | 64  # DXF reference, group 70 of POLYLINE: fitted, splined, in space, a mesh
 _FINGERPRINT = re.compile(r"[0-9a-f]{16}")
 _MOST_TITLE = 120  # characters; as long as a title of a document may be
 _BLANK, _SIDE, _KERF = "blank: ", "drawn from the ", "outlines are "  # how lines of our heads begin
@@ -144,7 +143,7 @@ def _drawn(layer: str, entity: DXFEntity) -> DrawnEntity:
                 layer, entity, [(x, y, bulge) for x, y, bulge in entity.get_points("xyb")], closed=bool(entity.closed)
             )
         case Polyline():
-            if entity.dxf.flags & _CURVE_FITTED & ~_CLOSED:
+            if entity.dxf.flags & _NOT_PLAIN:
                 raise _stranger(layer, entity, "fitted to a curve, in space, or a mesh")
             places = [(vertex.dxf.location, vertex.dxf.get("bulge", 0.0)) for vertex in entity.vertices]
             vertices = [(place.x, place.y, bulge) for place, bulge in places]

@@ -124,10 +124,10 @@ def test_more_drawings_than_are_read_in_a_minute_are_refused() -> None:
 
 def test_more_vertices_than_are_written_in_a_minute_are_refused() -> None:
     vertices = sum(len(places) for *_, places in entities_of(GOOD))
-    most = math.floor(200_000 / vertices)
+    most = math.floor(500_000 / vertices)
 
     assert most < 2000
-    message = f"the drawings of all discs have {vertices * (most + 1)} vertices together, 200000 are allowed; make"
+    message = f"the drawings of all discs have {vertices * (most + 1)} vertices together, 500000 are allowed; make"
     with pytest.raises(DocumentError, match=message):
         plan_sheets(job_for(most + 1), {"d1": GOOD})
 

@@ -1,0 +1,81 @@
+"""How far what is drawn reaches, held against points of its arcs that another library works out."""
+
+import math
+
+import numpy as np
+import pytest
+from ezdxf.math import bulge_center, bulge_radius, bulge_to_arc
+from hypothesis import given
+from hypothesis import strategies as st
+
+from layout.mechanics.arrays import frozen_floats
+from layout.mechanics.drawn import DrawnCircle, DrawnLine, DrawnPoint, places_mm, reach_mm
+
+STEPS = 20_000  # points of an arc; of radius r they come as near to the farthest as r·(π/STEPS)²/2
+
+
+def line(*vertices: tuple[float, float, float], closed: bool = False) -> DrawnLine:
+    array = np.array(vertices, dtype=np.float64)
+    points_mm, bulge_ratio = frozen_floats(array[:, :2]), frozen_floats(array[:, 2])
+    return DrawnLine(layer="SLITS", points_mm=points_mm, bulge_ratio=bulge_ratio, closed=closed)
+
+
+@pytest.mark.parametrize(
+    ("entity", "far_mm"),
+    [
+        (DrawnPoint(layer="HITS", at_mm=frozen_floats([3, 4])), 5),
+        (DrawnCircle(layer="RIM", centre_mm=frozen_floats([3, 4]), radius_mm=7), 12),
+        (line((3, 4, 0)), 5),
+        (line((0, 0, 0), (6, 8, 0)), 10),
+        (line((-5, 0, 1), (5, 0, 0)), 5),  # a half-circle about the origin
+        (line((-5, -10, 1), (5, -10, 0)), 15),  # one that bulges away from it, to the right of its chord
+        (line((-5, -10, -1), (5, -10, 0)), math.hypot(5, 10)),  # one that bulges towards it
+        (line((10, 0, 1), (-10, 0, 1), closed=True), 10),  # a rim in two halves
+        (line((0, 0, 1e-300), (6, 8, 0)), 10),  # as good as straight
+        (line((1, 1, 1), (1, 1, 1), closed=True), math.sqrt(2)),  # without length
+    ],
+)
+def test_the_reach_of_what_can_be_worked_out_by_hand(
+    entity: DrawnLine | DrawnCircle | DrawnPoint, far_mm: float
+) -> None:
+    assert reach_mm(entity) == pytest.approx(far_mm, abs=1e-12)
+
+
+places = st.tuples(st.floats(-100, 100), st.floats(-100, 100))
+
+
+@given(places, places, st.floats(-3, 3).filter(lambda bulge: abs(bulge) > 0.01))
+def test_the_reach_of_an_arc_is_that_of_its_farthest_point(
+    start: tuple[float, float], end: tuple[float, float], bulge: float
+) -> None:
+    if math.dist(start, end) < 0.01:
+        return
+    centre, from_rad, to_rad, radius_mm = bulge_to_arc(start, end, bulge)
+    turn_rad = from_rad + (to_rad - from_rad) % (2 * math.pi) * np.arange(STEPS + 1) / STEPS
+    around = np.column_stack([centre.x + radius_mm * np.cos(turn_rad), centre.y + radius_mm * np.sin(turn_rad)])
+
+    far_mm = reach_mm(line((*start, bulge), (*end, 0)))
+
+    assert far_mm == pytest.approx(np.hypot(*around.T).max(), abs=1e-7 + radius_mm * (math.pi / STEPS) ** 2)
+
+
+@given(places, places, st.floats(-3, 3).filter(lambda bulge: abs(bulge) > 0.01))
+def test_the_middle_of_an_arc_lies_on_it_and_halfway(
+    start: tuple[float, float], end: tuple[float, float], bulge: float
+) -> None:
+    if math.dist(start, end) < 0.01:
+        return
+    centre, radius_mm = bulge_center(start, end, bulge), bulge_radius(start, end, bulge)
+
+    shown = places_mm(line((*start, bulge), (*end, 0)))
+
+    assert shown[:2].tolist() == [list(start), list(end)]
+    middle = shown[2].tolist()
+    assert math.dist(middle, (centre.x, centre.y)) == pytest.approx(radius_mm, abs=1e-9)
+    assert math.dist(middle, start) == pytest.approx(math.dist(middle, end), abs=1e-9)
+
+
+def test_the_quarters_of_a_circle_show_where_it_lies() -> None:
+    circle = DrawnCircle(layer="RIM", centre_mm=frozen_floats([1, 2]), radius_mm=3)
+
+    assert places_mm(circle).tolist() == [[4, 2], [1, 5], [-2, 2], [1, -1]]
