@@ -31,7 +31,7 @@ def line(*vertices: tuple[float, float, float], closed: bool = False) -> DrawnLi
         (line((-5, -10, 1), (5, -10, 0)), 15),  # one that bulges away from it, to the right of its chord
         (line((-5, -10, -1), (5, -10, 0)), math.hypot(5, 10)),  # one that bulges towards it
         (line((10, 0, 1), (-10, 0, 1), closed=True), 10),  # a rim in two halves
-        (line((0, 0, 1e-300), (6, 8, 0)), 10),  # as good as straight
+        (line((0, 0, 1e-310), (6, 8, 0)), 10),  # as good as straight
         (line((1, 1, 1), (1, 1, 1), closed=True), math.sqrt(2)),  # without length
     ],
 )

@@ -163,15 +163,25 @@ def test_lettering_on_a_sheet_carries_its_words_as_on_the_disc() -> None:
             if entity.has_xdata("DISCWRIGHT")
         ]
 
-    on_sheet = words(sheet_files(job_for(), d1=DISCS["laser"])["sheet-1.dxf"])
+    drawing = sheet_files(job_for(), d1=DISCS["laser"])["sheet-1.dxf"]
 
-    assert on_sheet == 2 * words(DISCS["laser"])
-    assert "Spring dance" in on_sheet
+    assert words(drawing) == 2 * words(DISCS["laser"])
+    assert "Spring dance" in words(drawing)
+    assert registered(drawing) == registered(DISCS["laser"])
+    assert "DISCWRIGHT" in registered(drawing)
+    assert "DISCWRIGHT" not in registered(sheet_files(job_for())["sheet-1.dxf"])
 
 
 @every_disc
 def test_the_same_job_and_drawings_give_the_same_bytes(dxf: bytes) -> None:
     assert sheet_files(job_for(), d1=dxf) == sheet_files(job_for(), d1=dxf)
+
+
+def registered(dxf: bytes) -> list[str]:
+    """The applications of the file's own table; a library that reads it would add what is missing."""
+    tags = dxf_tags(dxf)
+    records = [place for place, tag in enumerate(tags) if tag == (0, "APPID")]
+    return [next(value for code, value in tags[place:] if code == 2) for place in records]
 
 
 def comments_of(dxf: bytes) -> str:
