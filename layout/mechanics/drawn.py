@@ -58,6 +58,7 @@ class DrawnDisc:
         blank: The head's line on the sheet it is cut from; "" where there is none.
         side: The head's line on the side it is drawn from; "" where there is none.
         kerf: The head's line on the kerf; "" where there is none.
+        hits: The head's line on what strikes at its points, with the tool; "" where there is none.
         digest: SHA-256 of the file, in hex.
         release: Of the DXF format, "R12" or "R2010": what the shop's control reads.
         rim_diameter_mm: As drawn.
@@ -70,6 +71,7 @@ class DrawnDisc:
     blank: str
     side: str
     kerf: str
+    hits: str
     digest: str
     release: str
     rim_diameter_mm: float

@@ -36,7 +36,7 @@ _APP_ID, _STRING = "DISCWRIGHT", 1000  # under which lettering carries its words
 _NOT_PLAIN = 2 | 4 | 8 | 16 | 32 | 64  # DXF reference, group 70 of POLYLINE: fitted, splined, in space, a mesh
 _FINGERPRINT = re.compile(r"[0-9a-f]{16}")
 _MOST_TITLE = 120  # characters; as long as a title of a document may be
-_BLANK, _SIDE, _KERF = "blank: ", "drawn from the ", "outlines are "  # how lines of our heads begin
+_BLANK, _SIDE, _KERF, _HITS = "blank: ", "drawn from the ", "outlines are ", "hits: "  # how lines of our heads begin
 _TAKE_OURS = "use disc.dxf as it was written"
 
 
@@ -69,6 +69,7 @@ def read_as_drawn(dxf: bytes) -> DrawnDisc:
         blank=_line(head, _BLANK),
         side=_line(head, _SIDE).partition(";")[0],
         kerf=_line(head, _KERF),
+        hits=_line(head, _HITS),
         digest=hashlib.sha256(dxf).hexdigest(),
         release=release,
         rim_diameter_mm=2 * rim_mm,

@@ -126,7 +126,9 @@ def _of_the_drawings(kinds: list[DiscKind]) -> Iterator[str]:
         else:
             title, fingerprint = kind.drawing.title or "untitled", kind.drawing.fingerprint or "unknown"
             yield f"disc {kind.id}: {title}; fingerprint {fingerprint}"
+            if kind.drawing.hits:
+                yield f"disc {kind.id}: {kind.drawing.hits}"
     for told in zip(*((drawn.blank, drawn.side, drawn.kerf) for drawn in drawings), strict=True):
         yield from dict.fromkeys(line for line in told if line)
     if any(isinstance(each, DrawnPoint) for drawn in drawings for each in drawn.entities):
-        yield "hits: one point for each projection, struck about its own disc's centre, which parts.csv tells"
+        yield "hits go round the centre of their own disc, which parts.csv tells"
