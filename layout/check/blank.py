@@ -103,7 +103,8 @@ def keep_outs_are_clear(disc: Disc) -> list[Finding]:
 def _radial_reach_mm(disc: Disc, index: int) -> tuple[float, float]:
     """Least and greatest distance of a track's openings from the centre: the same for all of them."""
     radius_mm = disc.turning.radius_mm[[index]]
-    points_mm = on_disc_mm(disc.pattern.core_points_mm, radius_mm, np.zeros(1), disc.turning.direction)
+    pattern, direction = disc.pattern, disc.turning.direction
+    points_mm = on_disc_mm(pattern.core_points_mm, radius_mm, np.zeros(1), direction, pattern.strike_u_mm)
     nearest_mm = float(shapely.distance(core_geometries(points_mm)[0], shapely.Point(0.0, 0.0)))
     farthest_mm = float(np.hypot(points_mm[0, :, 0], points_mm[0, :, 1]).max())
     return nearest_mm - disc.pattern.core_round_mm, farthest_mm + disc.pattern.core_round_mm
@@ -130,7 +131,7 @@ def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> lis
 
 def webs_to_features_hold(disc: Disc) -> list[Finding]:
     """An error for every opening that leaves less than the least web to a hole, slot or notch of the blank."""
-    points_mm = on_disc_mm(disc.pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    points_mm = disc.placed_mm(disc.pattern.core_points_mm)
     cores = core_geometries(points_mm)
     findings: list[Finding] = []
     for feature in disc.movement.disc.features:

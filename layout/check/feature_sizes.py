@@ -196,7 +196,8 @@ def _at(disc: Disc, openings: tuple[int, ...], tracks: tuple[int, ...]) -> Place
 
 
 def _cores(disc: Disc, radius_mm: FloatArray, angle_rad: FloatArray) -> NDArray[np.object_]:
-    return core_geometries(on_disc_mm(disc.pattern.core_points_mm, radius_mm, angle_rad, disc.turning.direction))
+    pattern, direction = disc.pattern, disc.turning.direction
+    return core_geometries(on_disc_mm(pattern.core_points_mm, radius_mm, angle_rad, direction, pattern.strike_u_mm))
 
 
 def _reach_mm(core: shapely.Geometry, round_mm: float) -> tuple[float, float]:

@@ -9,7 +9,6 @@ import shapely
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, MOST_FINDINGS
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
@@ -17,7 +16,7 @@ from layout.place.disc import Disc
 def webs_between_openings_hold(disc: Disc) -> list[Finding]:
     """An error for every pair of openings nearer than the cutter's least web, thinnest first."""
     limit_mm, round_mm = disc.cutter.min_web_mm, disc.pattern.core_round_mm
-    points_mm = on_disc_mm(disc.pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    points_mm = disc.placed_mm(disc.pattern.core_points_mm)
     cores = core_geometries(points_mm)
     tree = shapely.STRtree(cores)
     one, two = tree.query(cores, predicate="dwithin", distance=limit_mm + 2 * round_mm)

@@ -15,7 +15,6 @@ from layout.cut.plan import Circles, CutPath, Drawing, Entity, Lettering, Outlin
 from layout.cut.striking import hit_order, strike_path
 from layout.cut.touring import short_round_trip
 from layout.mechanics.arrays import FloatArray, IntArray
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
@@ -36,7 +35,7 @@ def cutting_order(disc: Disc) -> IntArray:
 def hot_pairs(disc: Disc) -> IntArray:
     """Shape (m, 2). Pairs of projections, the lower index first, with a web of less than HOT_WEB_MM between them."""
     pattern = disc.pattern
-    placed_mm = on_disc_mm(pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    placed_mm = disc.placed_mm(pattern.core_points_mm)
     openings = core_geometries(placed_mm)
     within_mm = HOT_WEB_MM + 2 * pattern.core_round_mm
     pairs = shapely.STRtree(openings).query(openings, predicate="dwithin", distance=within_mm).T
@@ -51,7 +50,7 @@ def _begun_at_mm(disc: Disc) -> FloatArray:
         at_mm = np.zeros((1, 2))
     else:
         at_mm = cut.points_mm[:1] if cut.closed else (cut.points_mm[:1] + cut.points_mm[-1:]) / 2
-    return on_disc_mm(at_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)[:, 0]
+    return disc.placed_mm(at_mm)[:, 0]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

@@ -4,7 +4,6 @@ import numpy as np
 
 from layout.cut.plan import Circles, Entity, LayerName, Outlines, Points
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Shape
 from layout.place.disc import Disc
 
@@ -54,4 +53,4 @@ def _outlines(layer: LayerName, shape: Shape, disc: Disc, order: IntArray) -> Ou
 
 
 def _placed_mm(disc: Disc, order: IntArray, points_mm: FloatArray) -> FloatArray:
-    return on_disc_mm(points_mm, disc.radius_mm[order], disc.edge_angle_rad[order], disc.turning.direction)
+    return disc.placed_mm(points_mm)[order]

@@ -10,7 +10,6 @@ from shapely.geometry.base import BaseGeometry
 
 from layout.cut.blank import turned_mm
 from layout.documents.movement import Feature, Movement
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
@@ -85,7 +84,7 @@ def _taken(feature: Feature) -> list[BaseGeometry]:
 
 def _openings(disc: Disc) -> BaseGeometry:
     pattern = disc.pattern
-    placed_mm = on_disc_mm(pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    placed_mm = disc.placed_mm(pattern.core_points_mm)
     # A buffer's polygon lies inside the round end it stands for; its corners at 1/cos outside cover it.
     round_mm = pattern.core_round_mm / math.cos(math.pi / (4 * _QUARTER_PIECES))
     return shapely.union_all(shapely.buffer(core_geometries(placed_mm), round_mm, quad_segs=_QUARTER_PIECES))

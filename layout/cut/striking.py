@@ -30,7 +30,7 @@ def hit_order(disc: Disc) -> IntArray:
     """Shape (n,). Projection indices in the order of the hits; none for a disc without projections.
 
     All projections of a disc are made with one tool, so nothing is sorted by tool. What decides is the
-    least moving of table and slide together, by the press's stated speeds. A press whose table has
+    little moving of table and slide together, by the press's stated speeds. A press whose table has
     backlash (`turns_one_way`) comes onto every hit from one side (common practice), and each move back
     is counted with what that takes. Where the foot of the tool would stand on a formed neighbour, the
     two are struck the other way round if that helps. Holes are struck before formed hits, so formed

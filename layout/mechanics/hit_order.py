@@ -1,4 +1,4 @@
-"""The order of a press's strikes: the least moving from one to the next that keeps what must come first.
+"""The order of a press's strikes: little moving from one to the next that keeps what must come first.
 
 Finding the shortest way through many places is the travelling salesman's problem, here open at both
 ends. A way of rings is laid first: the band of tracks is cut into some rings, and each is struck round

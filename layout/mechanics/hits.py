@@ -76,7 +76,8 @@ class Hits:
 
     def placed_mm(self, points_mm: FloatArray) -> FloatArray:
         """Shape (n, k, 2). Points (k, 2) of the flat frame, for every hit."""
-        return on_disc_mm(points_mm, self.edge_radius_mm, self.edge_angle_rad, self.turning.direction)
+        placed = self.edge_radius_mm, self.edge_angle_rad, self.turning.direction
+        return on_disc_mm(points_mm, *placed, self.pattern.strike_u_mm)
 
     def feet_on_formed(self) -> IntArray:
         """Shape (m, 2). Pairs (standing, struck): the tool's foot, at the second, would stand on the first's tab.
@@ -117,8 +118,8 @@ class Hits:
     def order(self) -> IntArray:
         """Shape (n,). The hits in the order struck.
 
-        All hits of a disc are of one tool, so there is nothing to sort by tool. They are struck with the
-        least moving of table and slide, by the speeds stated. Where the tool's foot would stand on a
+        All hits of a disc are of one tool, so there is nothing to sort by tool. They are struck with
+        little moving of table and slide, by the speeds stated. Where the tool's foot would stand on a
         neighbour formed before, and would not the other way round, they are struck the other way round.
         """
         pairs = {(one, two) for one, two in self.feet_on_formed().tolist()}

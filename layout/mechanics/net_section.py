@@ -185,7 +185,7 @@ def metal_left(
 
 def _on_track(pattern: Pattern, turning: Turning, index: int) -> Outline | None:
     radius_mm = turning.radius_mm[[index]]
-    [points_mm] = on_disc_mm(pattern.opening.points_mm, radius_mm, np.zeros(1), turning.direction)
+    [points_mm] = on_disc_mm(pattern.opening.points_mm, radius_mm, np.zeros(1), turning.direction, pattern.strike_u_mm)
     # An anticlockwise disc turns the frame over, and with it the way every bulge bends.
     return outline_of(points_mm, pattern.opening.bulges * turning.direction)
 

@@ -62,7 +62,7 @@ class Pattern:
         fold_line_mm: The line to fold on, (2, 2); None where nothing is folded.
         blank_length_mm: Length of the flat tab from its tangent line; 0 where nothing is folded.
         body_behind_mm: How far standing metal reaches behind the working edge, along the travel.
-        strike_u_mm: Where the tool strikes on the u axis; 0 on a laser.
+        strike_u_mm: Where the tool strikes on the u axis; 0 on a laser. There the frame is square to the radius.
         tool: The press tool's name, "" on a laser or where no tool fits.
     """
 

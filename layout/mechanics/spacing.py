@@ -100,8 +100,12 @@ def webs_mm(turning: Turning, pattern: Pattern, first: FloatArray, second: Float
         first: Shape (n, 2). Radius and working-edge angle of one opening of each pair.
         second: Shape (n, 2). The same of the other.
     """
-    one = core_geometries(on_disc_mm(pattern.core_points_mm, first[:, 0], first[:, 1], turning.direction))
-    two = core_geometries(on_disc_mm(pattern.core_points_mm, second[:, 0], second[:, 1], turning.direction))
+    one, two = (
+        core_geometries(
+            on_disc_mm(pattern.core_points_mm, each[:, 0], each[:, 1], turning.direction, pattern.strike_u_mm)
+        )
+        for each in (first, second)
+    )
     return np.asarray(shapely.distance(one, two)) - 2 * pattern.core_round_mm
 
 

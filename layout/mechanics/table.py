@@ -46,8 +46,7 @@ def table_moves(forward_rad: FloatArray, *, take_up_rad: float) -> TableMoves:
     """The moves of a table that strikes at these angles in this order.
 
     From one strike to the next it takes the shorter way round, forward where both are equal; so no
-    move is longer than half a turn, and a control that counts angles on and one that takes the
-    shortest way go the same way.
+    step is longer than half a turn, what is taken up aside.
 
     Args:
         forward_rad: Shape (n,). Forward angles of the strikes, any whole turns; (0,) gives no moves.

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import Turning
 
@@ -39,6 +40,11 @@ class Disc:
     def radius_mm(self) -> FloatArray:
         """Shape (n,). Track radius of each projection."""
         return self.turning.radius_mm[self.track_index]
+
+    def placed_mm(self, points_mm: FloatArray) -> FloatArray:
+        """Shape (n, k, 2). Points (k, 2) of the flat frame of every projection, seen from the label side."""
+        placed = self.radius_mm, self.edge_angle_rad, self.turning.direction
+        return on_disc_mm(points_mm, *placed, self.pattern.strike_u_mm)
 
     @property
     def used_tracks(self) -> list[int]:

@@ -135,3 +135,14 @@ def origins_of(places: Complexes, ahead_mm: float, direction: int) -> Complexes:
     radius = np.sqrt(np.maximum(np.abs(places) ** 2 - ahead_mm**2, 0.0))
     turn = np.exp(1j * direction * np.arctan2(ahead_mm, radius))
     return np.asarray(radius * _unit(places) * turn)
+
+
+def edges_of_hits(strikes: Complexes, ahead_mm: float, direction: int) -> Complexes:
+    """Where the working edge is, from strike points that lie a known way ahead of it on the tool.
+
+    The tool stands square to the radius through the strike point P, so the edge lies √(|P|² + w²) from the
+    centre, and atan(w/|P|) less far along the travel: exact.
+    """
+    radius = np.sqrt(np.abs(strikes) ** 2 + ahead_mm**2)
+    turn = np.exp(1j * direction * np.arctan2(ahead_mm, np.abs(strikes)))
+    return np.asarray(radius * _unit(strikes) * turn)

@@ -14,7 +14,7 @@ from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 from layout.read_back.contour import Contour
 from layout.read_back.entities import CutDrawing
-from layout.read_back.frames import Frames, frames_of, origins_of
+from layout.read_back.frames import Frames, edges_of_hits, frames_of
 from layout.read_back.limits import (
     SAME_CUT_MM,
     SHAPE_WITHIN_MM,
@@ -102,7 +102,7 @@ def projections_of(drawing: CutDrawing, wanted: Wanted) -> Found:
         origins.append(np.column_stack([frames.radius_mm, frames.angle_rad])[fits])
     if len(drawing.hits_mm) and wanted.layer == "HITS":
         places = drawing.hits_mm[:, 0] + 1j * drawing.hits_mm[:, 1]
-        found = origins_of(places, wanted.pattern.strike_u_mm, wanted.turning.direction)
+        found = edges_of_hits(places, wanted.pattern.strike_u_mm, wanted.turning.direction)
         origins.append(np.column_stack([np.abs(found), np.angle(found)]))
     elif len(drawing.hits_mm):
         findings += [_stray_hit(drawing, (x, y), wanted.cutter) for x, y in drawing.hits_mm.tolist()]

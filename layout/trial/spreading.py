@@ -185,7 +185,7 @@ def _staggered(pattern: Pattern, plucking: _Plucking, ground: Ground) -> _Stagge
 
 def _least_web_mm(pattern: Pattern, radius_mm: FloatArray, angle_rad: FloatArray, most_mm: float) -> float:
     """The least metal between any two of these openings, no more than is asked for."""
-    cores = core_geometries(on_disc_mm(pattern.core_points_mm, radius_mm, angle_rad, 1))
+    cores = core_geometries(on_disc_mm(pattern.core_points_mm, radius_mm, angle_rad, 1, pattern.strike_u_mm))
     one, two = shapely.STRtree(cores).query(cores, predicate="dwithin", distance=most_mm + 2 * pattern.core_round_mm)
     near_mm = shapely.distance(cores[one[one < two]], cores[two[one < two]]) - 2 * pattern.core_round_mm
     least_mm = float(near_mm.min(initial=most_mm))

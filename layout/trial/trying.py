@@ -130,7 +130,9 @@ def _tracks_on_the_metal(
 ) -> tuple[list[int], tuple[NotTried, ...]]:
     """The tracks whose openings leave the least web to rim and holes, by their place, and the others."""
     radius_mm = np.array([track.radius_mm for track in movement.tracks])
-    cores = core_geometries(on_disc_mm(pattern.core_points_mm, radius_mm, np.zeros(len(radius_mm)), 1))
+    cores = core_geometries(
+        on_disc_mm(pattern.core_points_mm, radius_mm, np.zeros(len(radius_mm)), 1, pattern.strike_u_mm)
+    )
     reach_mm = np.array([float(np.hypot(*shapely.get_coordinates(core).T).max()) for core in cores])
     near_mm = shapely.distance(cores, shapely.Point(0, 0)) - pattern.core_round_mm
     far_mm = reach_mm + pattern.core_round_mm
@@ -184,9 +186,11 @@ class _Drawn:
     def angle_rad(self, angle_rad: FloatArray | float) -> FloatArray:
         return np.asarray(self.sector.middle_rad + self.turn * (np.asarray(angle_rad) - self.whole_rad / 2))
 
-    def points_mm(self, points_mm: FloatArray, radius_mm: FloatArray, angle_rad: FloatArray) -> FloatArray:
+    def points_mm(
+        self, points_mm: FloatArray, radius_mm: FloatArray, angle_rad: FloatArray, square_at_mm: float = 0.0
+    ) -> FloatArray:
         # A disc mirrored in Y is a disc that turns the other way, with its angles negative.
-        return frozen_floats(on_disc_mm(points_mm, radius_mm, self.angle_rad(angle_rad), self.turn))
+        return frozen_floats(on_disc_mm(points_mm, radius_mm, self.angle_rad(angle_rad), self.turn, square_at_mm))
 
     def outlines(self, layer: LayerName, shape: Shape, radius_mm: FloatArray, angle_rad: FloatArray) -> Outlines:
         return Outlines(
@@ -212,7 +216,8 @@ def _cut(
                 at_mm, at_rad = _openings(one)
                 cut.append(drawn.outlines(one.rung.layer, one.rung.shape, at_mm, at_rad))
         return None, tuple(cut)
-    struck = [drawn.points_mm(np.array([[pattern.strike_u_mm, 0.0]]), radius_mm, places.track_angle_rad)]
+    strike_mm = pattern.strike_u_mm
+    struck = [drawn.points_mm(np.array([[strike_mm, 0.0]]), radius_mm, places.track_angle_rad, strike_mm)]
     for one in places.rungs:
         if one.rung.strike_u_mm is not None:
             struck.append(drawn.points_mm(np.array([[one.rung.strike_u_mm, 0.0]]), *_openings(one)))

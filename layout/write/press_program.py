@@ -29,7 +29,7 @@ def write_press_program(plan: CutPlan, disc: Disc) -> bytes:
     X is the slide, in millimetres: the distance of the tool's strike point from the table's middle. C is the
     table, in degrees: the angle of the strike point on the drawing, to be brought under the tool. Both are
     absolute. C counts on over whole turns and no move is longer than half a turn, so that a control that
-    counts on and one that takes the shortest way go the same way.
+    counts on and one that takes the shortest way go the same way: one that would be is made in two.
 
     A table that turns one way (`press.turns_one_way`) comes onto every hit from one side, so that its
     backlash is always taken up: before the first hit, and wherever it goes back, it first goes
@@ -42,10 +42,7 @@ def write_press_program(plan: CutPlan, disc: Disc) -> bytes:
     shop's own. `metric_word` says millimetres: G71 by ISO 6983-1 (from memory), G21 on many controls (common
     practice). All others are N, G0, G90, M0 and M30.
 
-    The tool stays square to the slide. The drawing's pattern is square to the radius through the working
-    edge, so a hit is turned against the drawing by the angle between the two: asin of `edge_ahead_mm` over
-    the strike's radius. A head comment gives the greatest. A tool ground with its working edge over its
-    strike point has none.
+    The tool stays square to the slide, as it stands in the record's openings.
 
     Only the hits are in it: holes and rim are cut apart. A disc without projections gives a program that
     ends at once.
@@ -82,7 +79,7 @@ def _head(plan: CutPlan, disc: Disc) -> list[str]:
         "C table, angle of the strike point on disc.dxf in degrees",
         "C counts on over whole turns, no move above half a turn",
         *([f"table comes onto every hit with C {_forward(disc)}"] if press.turns_one_way else []),
-        f"tool stands square to the slide, turned up to {_most_turned_deg(plan, disc):.2f} deg against disc.dxf",
+        "tool stands square to the slide, as record.dxf shows its openings",
         "hits only, holes before them and rim after them are not in this program",
         "caution, for trained people, local rules come first",
         "caution, guards in place, hands out, one person at the control",
@@ -101,13 +98,6 @@ def _forward_sign(disc: Disc) -> int:
     return disc.turning.direction * (-1 if disc.cutter.drawn_from == "star-side" else 1)
 
 
-def _most_turned_deg(plan: CutPlan, disc: Disc) -> float:
-    if not len(plan.at_mm):
-        return 0.0
-    nearest_mm = float(np.hypot(plan.at_mm[:, 0], plan.at_mm[:, 1]).min())
-    return math.degrees(math.asin(min(abs(disc.pattern.strike_u_mm) / nearest_mm, 1.0)))
-
-
 def _blocks(plan: CutPlan, disc: Disc) -> Iterator[str]:
     press = disc.cutter.press or Press()
     yield f"{press.metric_word} G90"
@@ -122,7 +112,11 @@ def _blocks(plan: CutPlan, disc: Disc) -> Iterator[str]:
     for place, slide_mm in enumerate(radius_mm.tolist()):
         table_deg = float(to_deg[place])
         if moves.taken_up[place]:
-            yield _move(slide_mm, table_deg - sign * take_up_deg)
+            past_deg = table_deg - sign * take_up_deg
+            from_deg = float(to_deg[place - 1]) if place else past_deg
+            if abs(past_deg - from_deg) > FULL_TURN_DEG / 2:
+                yield _move(slide_mm, (from_deg + past_deg) / 2)
+            yield _move(slide_mm, past_deg)
         yield f"{_move(slide_mm, table_deg)} (HIT {place + 1})"
         yield press.strike_word
     yield "M30"

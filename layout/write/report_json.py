@@ -14,10 +14,13 @@ from layout.report.report import BarLoss, Driving, Loaded, PeakLoad, Tally, Trac
 from layout.version import ENGINE_VERSION
 from layout.write.json_lines import json_lines
 from layout.write.laid_out import LaidOut
-from layout.write.numbers import rounded
+from layout.write.numbers import DECIMALS_DEG, DECIMALS_MM, rounded
 
 FORMAT = "discwright-report/1"
 CURVE_DECIMALS = 6  # of a second and of a newton millimetre: finer than any plot
+DECIMALS_SHARE = 9  # of a share: under a nanometre of any disc
+DECIMALS_SHARE = 9  # of a share: under a nanometre of any disc
+
 Record = dict[str, Any]  # JSON: what it holds is said by report_record
 
 
@@ -209,19 +212,20 @@ def _track(track: TrackTiming) -> Record:
 
 
 def _net_section(left: MetalLeft, least: NetSection | None) -> Record:
+    # Found by halving, within a micrometre: the digits past a nanometre are the processor's own.
     return {
-        "from_mm": left.from_mm,
-        "to_mm": left.to_mm,
+        "from_mm": round(left.from_mm, DECIMALS_MM),
+        "to_mm": round(left.to_mm, DECIMALS_MM),
         "line": {
-            "left_mm": left.line_mm,
-            "share": left.line_share,
-            "angle_deg": math.degrees(left.line_angle_rad),
+            "left_mm": round(left.line_mm, DECIMALS_MM),
+            "share": round(left.line_share, DECIMALS_SHARE),
+            "angle_deg": round(math.degrees(left.line_angle_rad), DECIMALS_DEG),
             "least_share": None if least is None else least.least_line_share,
         },
         "ring": {
-            "left_mm": left.ring_mm,
-            "share": left.ring_share,
-            "radius_mm": left.ring_radius_mm,
+            "left_mm": round(left.ring_mm, DECIMALS_MM),
+            "share": round(left.ring_share, DECIMALS_SHARE),
+            "radius_mm": round(left.ring_radius_mm, DECIMALS_MM),
             "least_share": None if least is None else least.least_ring_share,
         },
     }

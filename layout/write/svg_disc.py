@@ -9,7 +9,6 @@ from svgwrite.shapes import Circle
 
 from layout.cut.plan import CutPlan, Entity, LayerName
 from layout.mechanics.arrays import FloatArray
-from layout.mechanics.frame import on_disc_mm
 from layout.place.disc import Disc
 from layout.write.svg_page import Page, short
 from layout.write.svg_paths import circles, joined_data, lines_data, path_data
@@ -78,7 +77,7 @@ def working_edges(plan: CutPlan, disc: Disc, page: Page) -> Group:
     """A short thick line at every working edge, as drawn."""
     width_mm = disc.movement.projection.width_mm
     edge_mm = np.array([(0.0, -width_mm / 2), (0.0, width_mm / 2)])
-    ends_mm = on_disc_mm(edge_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    ends_mm = disc.placed_mm(edge_mm)
     thick_mm = min(page.units_mm(EMPHASIS_WIDTH), width_mm * _MOST_OF_EDGE)
     group = Group(id="working_edges", fill="none", stroke=BLACK, stroke_width=short(thick_mm), debug=False)
     group.elements.append(Title("working edge"))

@@ -5,7 +5,6 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
@@ -37,9 +36,7 @@ def thinnest_webs(disc: Disc, most: int) -> tuple[Web, ...]:
         disc: The disc.
         most: How many at most.
     """
-    cores = core_geometries(
-        on_disc_mm(disc.pattern.core_points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
-    )
+    cores = core_geometries(disc.placed_mm(disc.pattern.core_points_mm))
     tree = shapely.STRtree(cores)
     wanted = min(most, disc.projection_count * (disc.projection_count - 1) // 2)
     reach_mm = _FIRST_REACH_MM + 2 * disc.pattern.core_round_mm
@@ -55,9 +52,7 @@ def thinnest_webs(disc: Disc, most: int) -> tuple[Web, ...]:
 
 def _web(disc: Disc, one: int, two: int, web_mm: float) -> Web:
     pair = np.array([one, two])
-    points = on_disc_mm(
-        disc.pattern.core_points_mm, disc.radius_mm[pair], disc.edge_angle_rad[pair], disc.turning.direction
-    )
+    points = disc.placed_mm(disc.pattern.core_points_mm)[pair]
     first, second = core_geometries(points)
     across = shapely.shortest_line(first, second)
     middle = shapely.get_coordinates(across).mean(axis=0)

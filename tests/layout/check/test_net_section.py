@@ -21,30 +21,31 @@ def found_on(disc: Disc) -> list[Finding]:
 
 
 def test_a_line_that_is_cut_through_is_told_with_what_is_left() -> None:
-    # the band is √(100.8² + 1.85²) − 49.2 = 51.617 mm; three openings of 1.6 leave 46.816 of it: 90.70 %
+    # The lance stands square to the radius through its middle, √(r² − 0.7²) from the centre: the band is
+    # √(100.7976² + 1.15²) − 49.1951 = 51.609 mm; three openings of 1.6 leave 46.808 of it: 90.70 %
     [finding] = found_on(disc_of(PLAIN, CHORDS, cutter_asking(0.91, 0.5)))
 
     assert (finding.code, finding.level, finding.unit) == (Code.LINE_CUT_THROUGH, Level.ERROR, "%")
-    assert finding.measured == pytest.approx(100 * 46.816 / 51.617, abs=0.01)
+    assert finding.measured == pytest.approx(100 * 46.808 / 51.609, abs=0.01)
     assert finding.limit == pytest.approx(91)
-    # the working edges lie at 90 degrees, the outermost far corner atan(1.85/100.8) = 1.05 degrees behind
-    assert finding.at.angle_deg == pytest.approx(91.051, abs=0.001)
+    # The working edges lie at 90 degrees; the outermost corner ahead asin(0.7/100) − atan(1.15/100.7976) from there.
+    assert finding.at.angle_deg == pytest.approx(90 + 0.4011 - 0.6537, abs=0.001)
     assert finding.message == (
-        "On the line from the centre at 91.05°, openings leave 46.816 mm of the 51.617 mm between 49.200 and "
-        "100.817 mm: 90.70 %; turn-press needs 91.00 %. The disc may buckle or tear along it."
+        "On the line from the centre at 89.75°, openings leave 46.808 mm of the 51.609 mm between 49.195 and "
+        "100.804 mm: 90.70 %; turn-press needs 91.00 %. The disc may buckle or tear along it."
     )
     assert "chords bass-first" in finding.remedy
 
 
 def test_a_ring_that_is_cut_through_is_told_with_what_is_left() -> None:
-    # 60 openings, each asin(1.85/59.2289) + asin(0.45/59.2289) wide: 2.3302 of 6.2832 rad
+    # 60 openings, each 2 · asin(1.15/59.2071) wide, at √((59.9959 − 0.8)² + 1.15²) mm: 2.3310 of 6.2832 rad
     [finding] = found_on(disc_of(PLAIN, ROUND, cutter_asking(0.0, 0.63)))
 
     assert (finding.code, finding.level, finding.unit) == (Code.RING_CUT_THROUGH, Level.ERROR, "%")
-    assert finding.measured == pytest.approx(100 * (1 - 2.3302 / 6.2832), abs=0.002)
+    assert finding.measured == pytest.approx(100 * (1 - 2.33096 / 6.28319), abs=0.002)
     assert finding.limit == pytest.approx(63)
-    assert finding.at.radius_mm == pytest.approx(59.229, abs=0.001)
-    assert "at 59.229 mm, openings leave 234.128 mm of the 372.146 mm round: 62.91 %;" in finding.message
+    assert finding.at.radius_mm == pytest.approx(59.207, abs=0.001)
+    assert "at 59.207 mm, openings leave 234.000 mm of the 372.009 mm round: 62.90 %;" in finding.message
     assert "turn-press needs 63.00 %. The disc may tear off or twist along it." in finding.message
     assert "share them with another track" in finding.remedy
 

@@ -70,11 +70,15 @@ def outlines(disc: Disc) -> list[shapely.Geometry]:
     core = pattern.core_points_mm * [1, -disc.turning.direction]
     flat = shapely.Polygon(core) if len(core) > 2 else shapely.LineString(core)
     flat = flat.buffer(pattern.core_round_mm, quad_segs=400) if pattern.core_round_mm else flat
-    # In the frame, u is the travel: against the angle for a clockwise disc. Turn u to -y or +y, v to +x.
+    # In the frame, u is the travel: against the angle for a clockwise disc. Turn u to -y or +y, v to +x. A press's
+    # frame stands square where the tool strikes, and puts the edge, so far ahead or behind, on its track at its angle.
+    strike_mm, direction = pattern.strike_u_mm, disc.turning.direction
     made = []
     for radius_mm, angle in zip(disc.radius_mm, disc.edge_angle_rad, strict=True):
-        upright = affinity.rotate(flat, -90 * disc.turning.direction, origin=(0, 0))
-        made.append(affinity.rotate(affinity.translate(upright, radius_mm, 0), math.degrees(angle), origin=(0, 0)))
+        upright = affinity.rotate(affinity.translate(flat, -strike_mm, 0), -90 * direction, origin=(0, 0))
+        out = affinity.translate(upright, math.sqrt(radius_mm**2 - strike_mm**2), 0)
+        behind_deg = direction * math.degrees(math.asin(strike_mm / radius_mm))
+        made.append(affinity.rotate(out, math.degrees(angle) - behind_deg, origin=(0, 0)))
     return made
 
 

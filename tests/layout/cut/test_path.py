@@ -238,6 +238,6 @@ def test_a_press_counts_hits_and_cuts_nothing() -> None:
     path = path_of(disc_of(PLAIN, [(3, 5.0), (1, 20.0)], PRESS))
 
     assert (path.cut_length_mm, path.pierce_count, path.hit_count) == (0.0, 0, 2)
-    # The tool is 0.7 mm behind the edge on both tracks, 100 and 50 mm: √(r² + 0.49) apart, so 49.9976 mm.
-    assert path.slid_mm == pytest.approx(math.hypot(100, 0.7) - math.hypot(50, 0.7))
+    # The tool strikes 0.7 mm behind the edge, on both tracks, 100 and 50 mm: √(r² − 0.49) from the centre.
+    assert path.slid_mm == pytest.approx(math.sqrt(100**2 - 0.49) - math.sqrt(50**2 - 0.49))
     assert path.tool_change_count == 0

@@ -132,28 +132,30 @@ def signed_area_mm2(outline: Outlines) -> float:
 
 
 def test_a_press_hits_every_projection_once_at_the_strike_point() -> None:
-    # Tool L12: the working edge is 0.7 ahead of the strike point, so at the quarter turn, travel to +x, the
-    # strike point lies at (−0.7, 100); the turn-press is drawn from the star side: (−0.7, −100).
+    # Tool L12: the working edge is 0.7 ahead of the strike point, square to whose radius the tool stands. So the
+    # strike point lies R = √(100² − 0.7²) from the centre and asin(0.7/100) behind the edge at the quarter turn,
+    # travel to +x: at (−R · 0.7/100, R · R/100); the turn-press is drawn from the star side.
     disc = disc_of(PLAIN, QUARTER_TURN, PRESS)
 
     plan = plan_of(disc)
 
     [hits] = on_layer(plan.disc, "HITS")
     assert isinstance(hits, Points)
-    assert hits.points_mm.tolist() == [pytest.approx([-0.7, -100.0])]
+    assert hits.points_mm.tolist() == [pytest.approx([-0.699983, -99.9951], abs=1e-6)]
     assert plan.at_mm.tolist() == hits.points_mm.tolist()
     assert plan.tool == "L12"
     assert on_layer(plan.disc, "SLITS") == on_layer(plan.disc, "SLOTS") == []
 
 
 def test_a_slot_tool_strikes_the_middle_of_the_slot() -> None:
-    # The trailing end, at (0, 100), is the working edge and the slot lies ahead of it: its middle is at (1.1, 100).
+    # The trailing end, at (0, 100), is the working edge and the slot lies ahead of it, square to the radius through
+    # its middle, R = √(100² − 1.1²) from the centre: at (R · 1.1/100, R · R/100).
     disc = disc_of(SLOTS, QUARTER_TURN, cutter_with({"tools": [SLOT_TOOL], "drawn_from": "label-side"}, PRESS))
 
     [hits] = on_layer(plan_of(disc).disc, "HITS")
 
     assert isinstance(hits, Points)
-    assert hits.points_mm.tolist() == [pytest.approx([1.1, 100.0])]
+    assert hits.points_mm.tolist() == [pytest.approx([1.099933, 99.9879], abs=1e-6)]
 
 
 def test_on_a_laser_the_place_of_a_projection_is_the_middle_of_its_working_edge() -> None:

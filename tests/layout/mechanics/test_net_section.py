@@ -10,13 +10,13 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from layout.documents import Cutter, Movement
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.net_section import LINE_GRAIN_MM, RING_GRAIN_RAD, MetalLeft, metal_left
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 
-# The press's lance L12 leaves a rectangle: 1.6 across, from 1.85 behind the working edge to 0.45 ahead of it.
-BEHIND_MM, AHEAD_MM, HALF_MM = 1.85, 0.45, 0.8
+# The press's lance L12 leaves a rectangle, 1.6 across and 2.3 along. It strikes 0.7 behind the working edge, in the
+# rectangle's middle, and stands square to the radius there: at √(r² − 0.7²) from the centre, asin(0.7/r) behind.
+STRIKE_MM, HALF_LENGTH_MM, HALF_MM = 0.7, 1.15, 0.8
 FULL_TURN_RAD = 2 * math.pi
 
 
@@ -29,21 +29,34 @@ def left_on(disc: Disc) -> MetalLeft:
 
 def widest_angle(radius_mm: float) -> tuple[float, float]:
     """The widest a lanced opening is on a ring, and that ring: the innermost that is cut on both short sides."""
-    ring_mm = math.hypot(radius_mm - HALF_MM, BEHIND_MM)
-    return math.asin(BEHIND_MM / ring_mm) + math.asin(AHEAD_MM / ring_mm), ring_mm
+    ring_mm = math.hypot(stands_mm(radius_mm) - HALF_MM, HALF_LENGTH_MM)
+    return 2 * math.asin(HALF_LENGTH_MM / ring_mm), ring_mm
+
+
+def stands_mm(radius_mm: float) -> float:
+    return math.sqrt(radius_mm**2 - STRIKE_MM**2)
+
+
+def corner_lean_rad(radius_mm: float) -> float:
+    """From the ray through the middle of an opening to that through an outer corner."""
+    return math.atan(HALF_LENGTH_MM / (stands_mm(radius_mm) + HALF_MM))
+
+
+FROM_MM = stands_mm(50) - HALF_MM  # the band of all tracks, 50 to 100 mm: from the innermost long side
+TO_MM = math.hypot(stands_mm(100) + HALF_MM, HALF_LENGTH_MM)  # to an outermost corner
 
 
 def test_one_opening_is_cut_most_through_its_outer_far_corner() -> None:
     left = left_on(disc_of(PLAIN, [(1, 10.0)], PRESS))
 
-    # the band of all tracks, 50 to 100 mm: from the long side at 50 − 0.8 to the far corner at √(100.8² + 1.85²)
-    assert (left.from_mm, left.to_mm) == pytest.approx((49.2, math.hypot(100.8, 1.85)), abs=1e-9)
-    # the ray through that corner leans most of those that cross both long sides: 1.6 · sec atan(1.85/50.8)
-    lean = math.atan(1.85 / 50.8)
-    assert left.line_mm == pytest.approx(math.hypot(100.8, 1.85) - 49.2 - 1.6 / math.cos(lean), abs=LINE_GRAIN_MM)
-    assert left.line_share == pytest.approx(1 - 1.601 / 51.617, abs=1e-4)
+    assert (left.from_mm, left.to_mm) == pytest.approx((FROM_MM, TO_MM), abs=1e-9)
+    # a ray through an outer corner leans most of those that cross both long sides: 1.6 · sec of it
+    lean = corner_lean_rad(50)
+    assert left.line_mm == pytest.approx(TO_MM - FROM_MM - 1.6 / math.cos(lean), abs=LINE_GRAIN_MM)
+    assert left.line_share == pytest.approx(1 - 1.6004 / 51.609, abs=1e-4)
     # the working edge lies at 90 degrees (30 + 6 · 10); the disc turns clockwise, so behind it is anticlockwise
-    assert left.line_angle_rad == pytest.approx(math.pi / 2 + lean, abs=1e-6)
+    middle_rad = math.pi / 2 + math.asin(STRIKE_MM / 50)
+    assert abs(left.line_angle_rad - middle_rad) == pytest.approx(lean, abs=1e-6)
     widest_rad, ring_mm = widest_angle(50.0)
     assert left.ring_share == pytest.approx(1 - widest_rad / FULL_TURN_RAD, abs=RING_GRAIN_RAD)
     assert left.ring_radius_mm == pytest.approx(ring_mm, abs=1e-6)
@@ -62,11 +75,13 @@ def test_a_ring_of_equal_openings_leaves_a_turn_less_all_of_them() -> None:
 def test_a_row_of_openings_on_one_ray_is_cut_by_all_of_them() -> None:
     left = left_on(disc_of(PLAIN, [(1, 10.0), (2, 10.0), (3, 10.0), (1, 30.0)], PRESS))
 
-    # the working edges lie on one ray; the ray that leans most and is in all three meets the outermost corner
-    lean = math.atan(1.85 / 100.8)
-    band_mm = math.hypot(100.8, 1.85) - 49.2
-    assert left.line_mm == pytest.approx(band_mm - 3 * 1.6 / math.cos(lean), abs=LINE_GRAIN_MM)
-    assert left.line_angle_rad == pytest.approx(math.pi / 2 + lean, abs=1e-6)
+    # The working edges lie on one ray, the middles asin(0.7/r) behind it. Of the rays in all three openings that
+    # through the outermost one's corner ahead leans most from the others' middles.
+    middles_rad = [math.pi / 2 + math.asin(STRIKE_MM / radius_mm) for radius_mm in (50, 60, 100)]
+    ray_rad = middles_rad[2] - corner_lean_rad(100)
+    cut_mm = sum(1.6 / math.cos(ray_rad - middle_rad) for middle_rad in middles_rad)
+    assert left.line_mm == pytest.approx(TO_MM - FROM_MM - cut_mm, abs=LINE_GRAIN_MM)
+    assert left.line_angle_rad == pytest.approx(ray_rad, abs=1e-6)
     # two openings on track 1 are the most on any ring
     assert left.ring_share == pytest.approx(1 - 2 * widest_angle(50.0)[0] / FULL_TURN_RAD, abs=2 * RING_GRAIN_RAD)
 
@@ -87,14 +102,16 @@ def test_a_ring_cut_right_round_leaves_nothing() -> None:
 
 
 def test_openings_across_the_start_of_the_turn_are_seen_whole() -> None:
-    # At 54.9 s the working edges lie 0.6 degrees short of a turn. The ray told leans 1.05 degrees from them: it
-    # lies past the start of the turn, in the middle of the inner opening, which begins before it.
-    left = left_on(disc_of(PLAIN, [(1, 54.9), (3, 54.9)], PRESS))
+    # At 55.05 s the working edges lie 0.3 degrees past the start of the turn. The ray told, through the outer opening's
+    # corner ahead, lies past it too, but in the inner opening, which begins before it.
+    left = left_on(disc_of(PLAIN, [(1, 55.05), (3, 55.05)], PRESS))
     elsewhere = left_on(disc_of(PLAIN, [(1, 10.0), (3, 10.0)], PRESS))
 
     assert left.line_mm == pytest.approx(elsewhere.line_mm, abs=LINE_GRAIN_MM)
     assert left.ring_share == pytest.approx(elsewhere.ring_share, abs=RING_GRAIN_RAD)
-    assert left.line_angle_rad == pytest.approx(math.radians(-0.6) + math.atan(1.85 / 100.8), abs=1e-6)
+    ray_rad = math.radians(0.3) + math.asin(STRIKE_MM / 100) - corner_lean_rad(100)
+    assert 0 < left.line_angle_rad == pytest.approx(ray_rad, abs=1e-6)
+    assert math.radians(0.3) + math.asin(STRIKE_MM / 50) - corner_lean_rad(50) < 0
 
 
 def drilled(**feature: object) -> MetalLeft:
@@ -114,10 +131,10 @@ def test_a_hole_of_the_blank_in_the_band_is_missing_too() -> None:
 
 
 def test_of_a_hole_only_what_lies_in_the_band_counts() -> None:
-    # its centre lies on the inner edge of the band, 49.2: of 8 mm the outer 4 count
-    left = drilled(shape="hole", radius_mm=49.2, width_mm=8, length_mm=8)
+    # its centre lies on the inner edge of the band: of 8 mm the outer 4 count
+    left = drilled(shape="hole", radius_mm=FROM_MM, width_mm=8, length_mm=8)
 
-    assert left.from_mm == pytest.approx(49.2, abs=1e-9)
+    assert left.from_mm == pytest.approx(FROM_MM, abs=1e-9)
     assert left.line_mm == pytest.approx(left.to_mm - left.from_mm - 4, abs=LINE_GRAIN_MM)
 
 
@@ -163,12 +180,10 @@ def test_corners_in_one_place_count_as_one() -> None:
 
 def outline(disc: Disc, place: int) -> shapely.Polygon:
     """One opening as shapely draws it; round ends in 64 steps a quarter, wrong by 0.65 · (1 − cos 0.7°) = 0.05 µm."""
-    radius_mm, angle_rad = disc.radius_mm[[place]], disc.edge_angle_rad[[place]]
     if disc.pattern.making == "slot":
-        [core] = on_disc_mm(disc.pattern.core_points_mm, radius_mm, angle_rad, disc.turning.direction)
+        core = disc.placed_mm(disc.pattern.core_points_mm)[place]
         return shapely.LineString(core).buffer(disc.pattern.core_round_mm, quad_segs=64)
-    [points] = on_disc_mm(disc.pattern.opening.points_mm, radius_mm, angle_rad, disc.turning.direction)
-    return shapely.Polygon(points)
+    return shapely.Polygon(disc.placed_mm(disc.pattern.opening.points_mm)[place])
 
 
 def sampled_line_mm(whole: shapely.Geometry, angle_rad: float, band_mm: tuple[float, float]) -> float:

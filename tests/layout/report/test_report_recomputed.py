@@ -156,16 +156,19 @@ def assert_metal_right(net: Json, layout: Json, movement: Movement, pattern: Pat
     direction = 1 if movement.turns == "clockwise" else -1
     core = pattern.core_points_mm * [1, -direction]  # u is the travel, against the angle for a clockwise disc
     flat = shapely.Polygon(core) if len(core) > 2 else shapely.LineString(core).buffer(pattern.core_round_mm, 64)
-    upright = affinity.rotate(flat, -90 * direction, origin=(0, 0))
-    whole = shapely.union_all(
-        [
-            affinity.rotate(affinity.translate(upright, place["radius_mm"], 0), place["angle_deg"], origin=(0, 0))
-            for place in layout["projections"]
-        ]
-    )
+    # A press's opening stands square to the radius through the strike point, its edge on its track at its angle.
+    strike_mm = pattern.strike_u_mm
+    upright = affinity.rotate(affinity.translate(flat, -strike_mm, 0), -90 * direction, origin=(0, 0))
+
+    def standing(radius_mm: float, angle_deg: float) -> shapely.Geometry:
+        out = affinity.translate(upright, math.sqrt(radius_mm**2 - strike_mm**2), 0)
+        behind_deg = direction * math.degrees(math.asin(strike_mm / radius_mm))
+        return affinity.rotate(out, angle_deg - behind_deg, origin=(0, 0))
+
+    whole = shapely.union_all([standing(place["radius_mm"], place["angle_deg"]) for place in layout["projections"]])
     band_mm = np.array([net["from_mm"], net["to_mm"]])
     # the band of all tracks, whichever are used
-    ends = [affinity.translate(upright, track.radius_mm, 0) for track in (movement.tracks[0], movement.tracks[-1])]
+    ends = [standing(track.radius_mm, 0) for track in (movement.tracks[0], movement.tracks[-1])]
     assert ends[0].distance(shapely.Point(0, 0)) == pytest.approx(band_mm[0], abs=1e-3)
     assert np.hypot(*shapely.get_coordinates(ends[1]).T).max() == pytest.approx(band_mm[1], abs=1e-3)
 

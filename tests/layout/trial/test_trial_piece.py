@@ -97,7 +97,8 @@ def test_each_track_has_one_projection_in_the_pattern_of_a_disc(movement: Moveme
     pattern, turning = pattern_of(movement, cutter), turning_of(movement)
     flat_mm = np.array([[pattern.strike_u_mm, 0.0]]) if pattern.cut is None else pattern.cut.points_mm
     found = read.hits_mm[:, None, :] if pattern.cut is None else read.vertices
-    at_zero = on_disc_mm(flat_mm, turning.radius_mm, np.zeros(len(turning.radius_mm)), turning.direction)
+    placed = turning.radius_mm, np.zeros(len(turning.radius_mm)), turning.direction
+    at_zero = on_disc_mm(flat_mm, *placed, pattern.strike_u_mm)
 
     for place, expected in enumerate(at_zero):
         points = label_side_mm(np.asarray(found[place]), cutter)

@@ -10,7 +10,6 @@ from layout.check.finding import Code, Finding, Level, Place
 from layout.cut.plan import Circles, CutPlan, Drawing, Entity, LayerName, Lettering, Outlines, Points
 from layout.documents import Cutter, Movement, shipped_cutter, shipped_movement
 from layout.mechanics.arrays import FloatArray, frozen_floats, frozen_ints
-from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
 from layout.place.disc import Disc
@@ -76,7 +75,7 @@ def full_disc(movement: Movement, cutter: Cutter) -> Disc:
 
 def drawn_mm(disc: Disc, points_mm: FloatArray) -> FloatArray:
     """Shape (n, k, 2). Points of every projection's flat frame as drawn."""
-    placed = on_disc_mm(points_mm, disc.radius_mm, disc.edge_angle_rad, disc.turning.direction)
+    placed = disc.placed_mm(points_mm)
     return frozen_floats(placed * (1, 1 if disc.cutter.drawn_from == "label-side" else -1))
 
 

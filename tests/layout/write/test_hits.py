@@ -54,9 +54,10 @@ def test_a_press_strikes_beside_the_working_edge_and_mirrored() -> None:
 
     [row] = rows_of(write_hits(plan_by_hand(disc), disc))
 
-    # Tool L11 strikes 0.8 mm behind the edge. The disc turns clockwise, so travel at 0 degrees is
-    # towards -y and behind is +0.8; drawn from the star side y turns over: -0.8. Track 1: 45 mm.
-    assert (row["tool"], row["x_mm"], row["y_mm"]) == ("L11", "45.000000", "-0.800000")
+    # Tool L11 strikes 0.8 mm behind the edge, square to its own radius R = √(45² − 0.8²) on track 1. The disc turns
+    # clockwise, so travel at 0 degrees is towards -y and behind is +y: at (R · R/45, R · 0.8/45). Drawn from the star
+    # side y turns over.
+    assert (row["tool"], row["x_mm"], row["y_mm"]) == ("L11", "44.985778", "-0.799874")
     assert float(row["radius_mm"]) == pytest.approx(45.007111, abs=1e-6)  # sqrt(45² + 0.8²)
     assert float(row["angle_deg"]) == pytest.approx(358.98151565, abs=1e-8)  # 360 - atan(0.8 / 45)
 

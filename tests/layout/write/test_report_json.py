@@ -114,13 +114,13 @@ def test_a_track_tells_its_timing() -> None:
 def test_the_metal_left_is_written_with_its_places_and_what_the_cutter_asks_for() -> None:
     record = report_record(laid_out_of(ONE_FOLD))["net_section"]
 
-    # One folded opening at 46.48 mm, 2.04 across: from 45.46; its far corner lies √(47.5² + 1.8945²) out
-    corner_mm = math.hypot(47.5, 1.8945)
-    assert (record["from_mm"], record["to_mm"]) == pytest.approx((45.46, corner_mm), abs=1e-3)
-    # Most is cut on the ray through that corner, 2.04 · sec atan(1.8945/47.5)
-    left_mm = corner_mm - 45.46 - 2.04 * corner_mm / 47.5
+    # The band of all tracks, 36 to 114.6 mm; openings are 2.04 across, their far corners 1.8945 beside the radius.
+    from_mm, to_mm = 36 - 1.02, math.hypot(114.6 + 1.02, 1.8945)
+    assert (record["from_mm"], record["to_mm"]) == pytest.approx((from_mm, to_mm), abs=1e-3)
+    # One opening at 46.48 mm: most is cut on the ray through its far corner, 2.04 · sec atan(1.8945/47.5)
+    left_mm = to_mm - from_mm - 2.04 * math.hypot(47.5, 1.8945) / 47.5
     assert record["line"]["left_mm"] == pytest.approx(left_mm, abs=2e-3)
-    assert record["line"]["share"] == pytest.approx(left_mm / (corner_mm - 45.46), abs=2e-3)
+    assert record["line"]["share"] == pytest.approx(left_mm / (to_mm - from_mm), abs=1e-4)
     ring = record["ring"]
     assert ring["left_mm"] == pytest.approx(ring["share"] * 2 * math.pi * ring["radius_mm"])
     assert (record["line"]["least_share"], ring["least_share"]) == (0.4, 0.4)

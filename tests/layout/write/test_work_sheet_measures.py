@@ -270,7 +270,8 @@ def test_two_slots_side_by_side_leave_the_web_between_their_tracks() -> None:
 
 def test_a_web_s_angle_is_that_of_the_drawing() -> None:
     placed = [(1, 60.0), (2, 60.0)]
-    [label], [star] = (thinnest_webs(disc_of(TARNLIGHT, cutter, placed), 5) for cutter in (LASER, PRESS))
+    other_side = LASER.model_copy(update={"drawn_from": "star-side"})
+    [label], [star] = (thinnest_webs(disc_of(TARNLIGHT, cutter, placed), 5) for cutter in (LASER, other_side))
 
     assert star.web_mm == pytest.approx(label.web_mm)
     assert star.angle_deg == pytest.approx(360 - label.angle_deg)
