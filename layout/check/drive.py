@@ -196,8 +196,9 @@ def tempo_holds(disc: Disc) -> list[Finding]:
     if wound is None:
         return []
     drive, load = wound
-    slows_percent = _PERCENT * run_down(drive, load, disc.movement.revolution_s).last_turn_slows_ratio
-    if slows_percent <= MOST_SLOWING_PERCENT:
+    run = run_down(drive, load, disc.movement.revolution_s)
+    slows_percent = _PERCENT * run.last_turn_slows_ratio
+    if slows_percent <= MOST_SLOWING_PERCENT or not run.turn_count:
         return []
     steady = steady_turns(drive, load, MOST_SLOWING_PERCENT / _PERCENT)
     return [
@@ -245,7 +246,7 @@ def train_gives_the_turn(disc: Disc) -> list[Finding]:
             level=Level.WARNING,
             message=(
                 f"The air brake's {winding.brake_turns_per_s:.4g} turns a second through a train of "
-                f"{gear_ratio(winding.disc_to_brake):.6g} turn the disc in {braked_s:.3f} s; {movement.id} states "
+                f"{gear_ratio(winding.disc_to_brake):.6g} turn the disc in {braked_s:.6g} s; {movement.id} states "
                 f"{movement.revolution_s:.3f} s, and {within_s:.3f} s may lie between them."
             ),
             measured=braked_s,

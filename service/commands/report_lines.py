@@ -141,10 +141,8 @@ def _drive_lines(drive: Mapping[str, Any]) -> list[str]:
         )
     if winding := drive["winding"]:
         most, least = ("at most ", "at least ") if winding["upper_bound"] else ("", "")
-        told.append(
-            f"{most}{winding['turns']:.2f} turns a winding, the last {least}"
-            f"{100 * winding['last_turn_slows_share']:.1f} % slower at its end"
-        )
+        last = f", the last {least}{100 * winding['last_turn_slows_share']:.1f} % slower at its end"
+        told.append(f"{most}{winding['turns']:.2f} turns a winding{last if winding['turns'] else ''}")
     if clearing := drive["clearing_turn"]["track_count"]:
         told.append(
             f"after a change of disc let it make one turn unheard: the first note of each of {clearing} tracks may "

@@ -46,7 +46,7 @@ def _of_the_blank(blank: DiscBlank) -> Iterator[Row]:
     if rolled is None:
         yield "rolled along", NOT_STATED
     else:
-        yield "rolled along", f"{rolled:g}° from the index mark, seen from the label side"
+        yield "rolled along", f"{rolled:g}° from the index mark, anticlockwise seen from the label side"
 
 
 def _feature(feature: Feature) -> str:

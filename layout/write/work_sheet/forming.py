@@ -88,7 +88,8 @@ def order_of_work(disc: Disc) -> list[str]:
             "Deburr rim and holes; take out every loose slug.",
         ]
     else:
-        steps += ["Cut; take the disc out when it is cool.", f"Take out every slug. Deburr {_burr(cutter)}."]
+        held = "" if cutter.bridges is None else f" Break its {cutter.bridges.count} bridges and stone the stubs flush."
+        steps += [f"Cut; take the disc out when it is cool.{held}", f"Take out every slug. Deburr {_burr(cutter)}."]
         folds = disc.pattern.making == "fold" and disc.projection_count > 0
         steps += ["Then fold, never before deburring."] if folds else []
     return [*steps, "Inspect by the list on sheet 2."]

@@ -19,7 +19,7 @@ _NAME_MM = 19.0
 _SECONDS_PER_MINUTE = 60
 _KILO = 1000
 _WHAT = {"SLITS": "slits", "SLOTS": "slots", "HITS": "hits", "HOLES": "holes", "RIM": "rim", "LEADS": "lead-ins"}
-_MOST_NOT_STATED_LINES = 4
+_MOST_NOT_STATED_LINES = 8
 
 
 def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: Making | None) -> Area:

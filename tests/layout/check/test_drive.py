@@ -298,7 +298,7 @@ def test_a_brake_that_gives_another_turn_is_warned_of(turns_per_s: float) -> Non
     assert (finding.measured, finding.limit) == (pytest.approx(2000 / turns_per_s), 60)
     assert finding.message == (
         f"The air brake's {turns_per_s} turns a second through a train of 2000 turn the disc in "
-        f"{2000 / turns_per_s:.3f} s; plain-3 states 60.000 s, and 0.150 s may lie between them."
+        f"{2000 / turns_per_s:.6g} s; plain-3 states 60.000 s, and 0.150 s may lie between them."
     )
 
 

@@ -1,5 +1,6 @@
 import itertools
 import math
+import re
 from typing import Any
 
 import numpy as np
@@ -16,7 +17,7 @@ from layout.mechanics.lettering import strokes_mm
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
 from layout.trial import trial_piece
-from layout.trial.wording import depth_slope
+from layout.trial.wording import depth_slope, depth_words, track_words
 from layout.write import write_dxf
 from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.trial.reading import Read, at_mark, read_dxf, read_piece, shipped_piece, size_mm
@@ -341,6 +342,18 @@ def test_how_the_inside_radius_is_corrected_gives_back_a_radius_that_was_off() -
     corrected_mm = 0.40 - deeper_mm / depth_slope(0.40, 0.5)
 
     assert corrected_mm == pytest.approx(0.42, abs=0.0005)
+    # and so does the formula as it is printed
+    fold = cutter_with({"fold/inside_radius_mm": 0.4}).fold
+    assert fold is not None
+    [(stated, sign, slope)] = re.findall(
+        r"fold\.inside_radius_mm = ([\d.]+) ([+-]) e / ([\d.]+)\.", depth_words(fold, 0.5)
+    )
+    assert float(stated) + (1 if sign == "+" else -1) * deeper_mm / float(slope) == pytest.approx(0.42, abs=0.0006)
+
+
+def test_a_track_is_corrected_outwards_where_its_wheel_lies_outside() -> None:
+    # A wheel whose middle lies outside the projection's stands on a larger circle than the document says.
+    assert "radius_mm = nominal + how far the wheel's middle lies outside the projection's middle" in track_words()
 
 
 def test_open_slits_are_said_to_be_as_wide_as_the_kerf() -> None:

@@ -1,5 +1,6 @@
 import csv
 import io
+import math
 from dataclasses import replace
 
 import numpy as np
@@ -58,8 +59,8 @@ def test_a_press_strikes_beside_the_working_edge_and_mirrored() -> None:
     # clockwise, so travel at 0 degrees is towards -y and behind is +y: at (R · R/45, R · 0.8/45). Drawn from the star
     # side y turns over.
     assert (row["tool"], row["x_mm"], row["y_mm"]) == ("L11", "44.985778", "-0.799874")
-    assert float(row["radius_mm"]) == pytest.approx(45.007111, abs=1e-6)  # sqrt(45² + 0.8²)
-    assert float(row["angle_deg"]) == pytest.approx(358.98151565, abs=1e-8)  # 360 - atan(0.8 / 45)
+    assert float(row["radius_mm"]) == pytest.approx(44.992888, abs=1e-6)  # sqrt(45² − 0.8²)
+    assert float(row["angle_deg"]) == pytest.approx(360 - math.degrees(math.asin(0.8 / 45)), abs=1e-8)
 
 
 @pytest.mark.parametrize("disc", EXAMPLE_DISCS.values(), ids=EXAMPLE_DISCS.keys())
