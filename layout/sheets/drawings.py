@@ -62,10 +62,11 @@ def _rims(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> Iterator[Problem]
     for place, wanted in enumerate(job.discs):
         drawn = drawings.get(wanted.id)
         if drawn is not None and abs(drawn.rim_diameter_mm - wanted.diameter_mm) > RIM_WITHIN_MM:
+            as_drawn = f" (compensated: the job must say {drawn.rim_diameter_mm:g})" if _is_compensated(drawn) else ""
             message = (
-                f"the rim in the drawing of {wanted.id} is {drawn.rim_diameter_mm:.3f} mm in diameter, the job says "
-                f"{wanted.diameter_mm:g}; allowed are {RIM_WITHIN_MM:g} mm between them: correct the job, or give the "
-                "drawing of this disc"
+                f"the rim in the drawing of {wanted.id} is {drawn.rim_diameter_mm:.3f} mm in diameter{as_drawn}, the "
+                f"job says {wanted.diameter_mm:g}; allowed are {RIM_WITHIN_MM:g} mm between them: correct the job, or "
+                "give the drawing of this disc"
             )
             yield Problem(pointer=f"/discs/{place}/diameter_mm", message=message)
 
@@ -85,9 +86,7 @@ def _unlike(drawings: Mapping[str, DrawnDisc]) -> Iterator[Problem]:
 
 
 def _without_kerf(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> Iterator[Problem]:
-    compensated = [
-        disc_id for disc_id, drawn in drawings.items() if drawn.kerf and not drawn.kerf.startswith(_FINISHED)
-    ]
+    compensated = [disc_id for disc_id, drawn in drawings.items() if _is_compensated(drawn)]
     plain = [each.id for each in job.discs if each.id not in drawings]
     if compensated and plain:
         message = (
@@ -95,6 +94,10 @@ def _without_kerf(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> Iterator[
             "a plain circle without it; give a drawing of every disc, or make two jobs"
         )
         yield Problem(pointer="/discs", message=message)
+
+
+def _is_compensated(drawn: DrawnDisc) -> bool:
+    return bool(drawn.kerf) and not drawn.kerf.startswith(_FINISHED)
 
 
 def _leads(job: SheetJob, reach_mm: float) -> Iterator[Problem]:

@@ -44,7 +44,7 @@ _KINDS = (
     ProblemKind(
         name="document-invalid",
         status=422,
-        title="A movement, cutter or settings document is not valid",
+        title="A document is not valid",
         what_to_do="document says which one; invalid_params lists each fault with its place as a JSON pointer. "
         "Correct these places. GET /v1/movements/ID and /v1/cutters/ID show valid documents.",
     ),

@@ -140,3 +140,9 @@ def test_a_job_with_other_drawings_has_another_fingerprint() -> None:
 
     assert len({plain, drawn, other}) == 3
     assert plan_sheets(job_for(1), {}).fingerprint == plain
+
+
+def test_a_compensated_rim_is_asked_for_as_it_is_drawn() -> None:
+    # 240 mm finished, and half a kerf of 0.12 mm more on either side
+    with pytest.raises(DocumentError, match=r"is 240.120 mm in diameter \(compensated: the job must say 240.12\)"):
+        plan_sheets(job_of([sheet(300, 300)], [(RIM_MM, 1)]), {"d1": COMPENSATED})
