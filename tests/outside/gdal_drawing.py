@@ -35,7 +35,7 @@ def plucks_from_cut_geometry(
     """
     side = -1.0 if cutter.drawn_from == "star-side" else 1.0
     if cutter.kind == "punch-press":
-        return [_pluck(complex(p.x, side * p.y), _strike_mm(movement, cutter), movement) for p in layers["HITS"]]
+        return [_struck(complex(p.x, side * p.y), _strike_mm(movement, cutter), movement) for p in layers["HITS"]]
     if movement.projection.kind == "slot":
         centres = [area_of(outline).centroid for outline in layers["SLOTS"]]
         # the working edge is the trailing end: the middle of the slot is half its length ahead
@@ -70,12 +70,26 @@ def _middle_of_slit_mm(movement: Movement, cutter: Cutter) -> float:
 
 
 def _pluck(place: complex, ahead_mm: float, movement: Movement) -> tuple[int, float]:
-    sign = 1 if movement.turns == "clockwise" else -1
+    """What a cut outline plucks, whose frame is square to the radius through its edge."""
     radius_mm = math.sqrt(abs(place) ** 2 - ahead_mm**2)
+    return _edge(radius_mm, _behind_rad(place, math.atan2(ahead_mm, radius_mm), movement), movement)
+
+
+def _struck(place: complex, ahead_mm: float, movement: Movement) -> tuple[int, float]:
+    """What a hit plucks: the tool stands square to the radius through the strike point."""
+    radius_mm = math.hypot(abs(place), ahead_mm)
+    return _edge(radius_mm, _behind_rad(place, math.atan2(ahead_mm, abs(place)), movement), movement)
+
+
+def _behind_rad(place: complex, by_rad: float, movement: Movement) -> float:
+    # ahead is along the travel: clockwise travel lowers the angle, so the edge lies at a higher one
+    return math.atan2(place.imag, place.real) + (1 if movement.turns == "clockwise" else -1) * by_rad
+
+
+def _edge(radius_mm: float, edge_rad: float, movement: Movement) -> tuple[int, float]:
+    sign = 1 if movement.turns == "clockwise" else -1
     track = min(movement.tracks, key=lambda track: abs(track.radius_mm - radius_mm))
     assert abs(track.radius_mm - radius_mm) < 0.001
-    # ahead is along the travel: clockwise travel lowers the angle, so the edge lies at a higher one
-    edge_rad = math.atan2(place.imag, place.real) + sign * math.atan2(ahead_mm, radius_mm)
     wheel = movement.star_wheel
     past_mm = (
         wheel.release_arc_mm

@@ -239,7 +239,7 @@ def test_the_limits_of_the_blank_are_told_and_what_is_not_stated_is_named() -> N
     assert "nowhere more than 0.12 mm off it" in stated
     assert "not above 0.08 mm" in stated
     assert "Ø 9 mm; 0.05 mm wider than the spindle" in stated
-    assert "rolled along 30° from the index mark, seen from the label side" in stated
+    assert "rolled along 30° from the index mark, anticlockwise seen from the label side" in stated
     assert "thickness 0.5 mm blank Ø 237 mm" in stated
 
 
