@@ -120,7 +120,7 @@ def test_too_many_corners_of_all_outlines_are_refused() -> None:
     listed = [{"id": f"rest-{n}", "outline_mm": ring} for n in range(9)]
 
     assert faults(stock=listed) == [
-        ("/stock", "the outlines have 4059 corners, 4000 are allowed; make several jobs of it")  # 9 × 451
+        ("/stock", "the outlines have 4059 corners, 1600 are allowed; make several jobs of it")  # 9 × 451
     ]
 
 
