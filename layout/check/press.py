@@ -25,7 +25,7 @@ def press_is_strong_enough(disc: Disc) -> list[Finding]:
     Not judged where the press's capacity_n or the sheet's shear_strength_n_per_mm2 is not stated, nor
     where no tool fits.
     """
-    hits, blank = _hits_of(disc), disc.movement.disc
+    hits, blank = disc.hits, disc.movement.disc
     capacity_n, shear_n_per_mm2 = hits.press.capacity_n, blank.shear_strength_n_per_mm2
     if disc.cutter.kind == "laser" or hits.tool is None or capacity_n is None or shear_n_per_mm2 is None:
         return []
@@ -63,7 +63,7 @@ def hits_fall_on_whole_metal(disc: Disc) -> list[Finding]:
     """
     if disc.cutter.kind == "laser":
         return []
-    hits = _hits_of(disc)
+    hits = disc.hits
     cores = core_geometries(hits.placed_mm(disc.pattern.core_points_mm))
     footprints = np.array([_grown(core, disc.pattern.core_round_mm) for core in cores], dtype=np.object_)
     return (_over_each_other(disc, hits, footprints) + _over_the_blank(disc, footprints))[:MOST_FINDINGS]
@@ -144,7 +144,7 @@ def feet_stand_on_flat_metal(disc: Disc) -> list[Finding]:
     """
     if disc.cutter.kind == "laser":
         return []
-    hits = _hits_of(disc)
+    hits = disc.hits
     pairs = hits.feet_on_formed()
     if not len(pairs):
         return []
@@ -186,15 +186,4 @@ def _place(disc: Disc, projections: tuple[int, ...]) -> Place:
         projections=projections,
         radius_mm=float(disc.radius_mm[projections[0]]),
         angle_deg=float(np.degrees(disc.edge_angle_rad[projections[0]])),
-    )
-
-
-def _hits_of(disc: Disc) -> Hits:
-    return Hits(
-        movement=disc.movement,
-        cutter=disc.cutter,
-        turning=disc.turning,
-        pattern=disc.pattern,
-        edge_radius_mm=disc.radius_mm,
-        edge_angle_rad=disc.edge_angle_rad,
     )

@@ -5,7 +5,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.mechanics.arrays import IntArray
-from layout.mechanics.hits import Hits
 from layout.mechanics.table import table_moves
 from layout.place.disc import Disc
 
@@ -36,7 +35,7 @@ def hit_order(disc: Disc) -> IntArray:
     two are struck the other way round if that helps. Holes are struck before formed hits, so formed
     hits are last; the plan of cutting sees to that.
     """
-    return hits_of(disc).order()
+    return disc.hits.order()
 
 
 def strike_path(disc: Disc, order: IntArray) -> StrikePath:
@@ -46,22 +45,10 @@ def strike_path(disc: Disc, order: IntArray) -> StrikePath:
         disc: The disc, for a press.
         order: Shape (n,). Projection indices in the order of the hits.
     """
-    hits = hits_of(disc)
+    hits = disc.hits
     moves = table_moves(hits.forward_rad[order], take_up_rad=hits.take_up_rad)
     return StrikePath(
         turned_rad=moves.turned_rad,
         slid_mm=float(np.abs(np.diff(hits.radius_mm[order])).sum()),
         tool_change_count=0,
-    )
-
-
-def hits_of(disc: Disc) -> Hits:
-    """The disc as a press sees it."""
-    return Hits(
-        movement=disc.movement,
-        cutter=disc.cutter,
-        turning=disc.turning,
-        pattern=disc.pattern,
-        edge_radius_mm=disc.radius_mm,
-        edge_angle_rad=disc.edge_angle_rad,
     )

@@ -6,6 +6,7 @@ from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.hits import Hits
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import Turning
 
@@ -45,6 +46,18 @@ class Disc:
         """Shape (n, k, 2). Points (k, 2) of the flat frame of every projection, seen from the label side."""
         placed = self.radius_mm, self.edge_angle_rad, self.turning.direction
         return on_disc_mm(points_mm, *placed, self.pattern.strike_u_mm)
+
+    @property
+    def hits(self) -> Hits:
+        """The disc as a press strikes it."""
+        return Hits(
+            movement=self.movement,
+            cutter=self.cutter,
+            turning=self.turning,
+            pattern=self.pattern,
+            edge_radius_mm=self.radius_mm,
+            edge_angle_rad=self.edge_angle_rad,
+        )
 
     @property
     def used_tracks(self) -> list[int]:

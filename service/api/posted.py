@@ -38,14 +38,14 @@ def read_posted(request: Request, query: Query, limits: Limits) -> Inputs:
     for name in DOCUMENT_PARTS:
         if len(parts.get(name, b"")) > limits.document_bytes:
             raise too_large(limits.document_bytes, f"the part {name}")
-    movement = _source("movement", query.movement, parts.get("movement"))
+    movement = source_of("movement", query.movement, parts.get("movement"))
     if movement is None:
         raise ProblemError(
             name="parameter-missing",
             detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
             more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
         )
-    cutter = _source("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
     return Inputs(tune=tune, movement=movement, cutter=cutter, settings=parts.get("settings", b"{}"))
 
 
@@ -92,7 +92,12 @@ def _unsupported(detail: str, headers: dict[str, str]) -> ProblemError:
     )
 
 
-def _source(name: str, named: str | None, written: bytes | None) -> Source | None:
+def source_of(name: str, named: str | None, written: bytes | None) -> Source | None:
+    """Where a document comes from: named in the query, brought as a part, or neither.
+
+    Raises:
+        ProblemError: It is given both ways.
+    """
     if named is not None and written is not None:
         raise ProblemError(
             name="parameter-invalid",

@@ -13,8 +13,9 @@ from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import Query, read_query
+from service.api.posted import source_of
 from service.api.problems import ProblemError
-from service.documents import Shipped, Source, Written, cutter_from, default_cutter, movement_from
+from service.documents import cutter_from, default_cutter, movement_from
 from service.limits import Limits
 
 FORM_MEDIA_TYPE = "multipart/form-data"
@@ -105,14 +106,14 @@ def _read(asked: Request, query: Query, limits: Limits) -> _Asked:
     for name, part in parts.items():
         if len(part) > limits.document_bytes:
             raise too_large(limits.document_bytes, f"the part {name}")
-    movement = _source("movement", query.movement, parts.get("movement"))
+    movement = source_of("movement", query.movement, parts.get("movement"))
     if movement is None:
         raise ProblemError(
             name="parameter-missing",
             detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
             more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
         )
-    cutter = _source("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
     return _Asked(movement=movement_from(movement), cutter=cutter_from(cutter))
 
 
@@ -136,15 +137,3 @@ def _parts(asked: Request, limits: Limits) -> dict[str, bytes]:
             headers={"Accept-Post": FORM_MEDIA_TYPE},
         )
     return {}
-
-
-def _source(name: str, named: str | None, written: bytes | None) -> Source | None:
-    if named is not None and written is not None:
-        raise ProblemError(
-            name="parameter-invalid",
-            detail=f"a {name} is given twice: as the parameter {name}={named} and as a part; give one of them",
-            more={"parameter": name},
-        )
-    if written is not None:
-        return Written(text=written)
-    return None if named is None else Shipped(id=named)

@@ -40,6 +40,12 @@ NEAR_RIM = Finding(
 )
 
 
+# What a layout for a laser has.
+LASER_FILES = [
+    *("disc.dxf", "record.dxf", "disc.svg", "hits.csv"),
+    *("work-sheet.pdf", "layout.json", "report.json", "making.json"),
+]
+
 ALL_KEPT = {
     "note_count": 2,
     "kept_count": 2,

@@ -6,7 +6,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from layout.cut.striking import StrikePath, hit_order, hits_of, strike_path
+from layout.cut.striking import StrikePath, hit_order, strike_path
 from layout.documents import Settings
 from layout.mechanics.arrays import frozen_floats
 from layout.place.disc import Disc
@@ -49,7 +49,7 @@ def test_no_foot_stands_on_formed_metal_of_a_demo_disc(name: str) -> None:
     disc = demo_disc(name)
     place = np.argsort(hit_order(disc))
 
-    standing, struck = hits_of(disc).feet_on_formed().T
+    standing, struck = disc.hits.feet_on_formed().T
 
     assert (place[standing] > place[struck]).all()
 
@@ -94,7 +94,7 @@ def test_of_two_near_each_other_on_a_track_the_one_ahead_is_struck_first(turns: 
     cutter = cutter_with({"tools/0/foot": {"length_mm": 7, "width_mm": 2}}, PRESS)
     disc = disc_of(movement, [(1, 10.0), (1, 10.0 + apart_s)], cutter)
 
-    pairs = hits_of(disc).feet_on_formed().tolist()
+    pairs = disc.hits.feet_on_formed().tolist()
     order = hit_order(disc).tolist()
 
     # The one ahead passes the row of star wheels first, so it sounds first: projection 0.
@@ -110,5 +110,5 @@ def test_forward_is_against_the_travel_so_what_sounds_later_comes_later(turns: s
     disc = disc_of(movement_with({"turns": turns}), [(1, 10.0), (1, 12.0), (1, 14.0)], cutter)
 
     # 6 degrees a second: 12 degrees from one to the next
-    np.testing.assert_allclose(np.diff(hits_of(disc).forward_rad), math.radians(12), atol=1e-12)
+    np.testing.assert_allclose(np.diff(disc.hits.forward_rad), math.radians(12), atol=1e-12)
     assert hit_order(disc).tolist() == [0, 1, 2]

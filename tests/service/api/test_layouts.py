@@ -5,14 +5,10 @@ from pathlib import Path
 import pytest
 
 from layout.documents import shipped_movement
-from tests.service.fakes import THIN_WEB, TUNE, Client, FakePlanner, client_of
+from tests.service.fakes import LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner, client_of
 
 TUNE_MEDIA_TYPES = ["audio/midi", "audio/x-midi", "audio/mid", "application/x-midi", "application/octet-stream"]
 
-LASER_FILES = [
-    *("disc.dxf", "record.dxf", "disc.svg", "hits.csv"),
-    *("work-sheet.pdf", "layout.json", "report.json", "making.json"),
-]
 GIVEN_ALL_THE_SAME = [name for name in LASER_FILES if name not in ("disc.dxf", "hits.csv")]
 
 
@@ -47,16 +43,7 @@ def test_every_link_leads_to_its_file(client: Client) -> None:
 
     answers = {name: client.get(path) for name, path in links.items()}
 
-    assert list(links) == [
-        "disc.dxf",
-        "record.dxf",
-        "disc.svg",
-        "hits.csv",
-        "work-sheet.pdf",
-        "layout.json",
-        "report.json",
-        "making.json",
-    ]
+    assert list(links) == LASER_FILES
     assert {name: answer.status_code for name, answer in answers.items()} == dict.fromkeys(links, 200)
     assert {name: answer.content_type for name, answer in answers.items()} == {
         "disc.dxf": "image/vnd.dxf",
@@ -172,14 +159,7 @@ def test_cutting_files_are_kept_back_where_an_error_stands(faulty_client: Client
 
     assert made.status_code == 201
     assert made.json["good_to_cut"] is False
-    assert list(made.json["links"]) == [
-        "record.dxf",
-        "disc.svg",
-        "work-sheet.pdf",
-        "layout.json",
-        "report.json",
-        "making.json",
-    ]
+    assert list(made.json["links"]) == GIVEN_ALL_THE_SAME
     assert refused.status_code == 422
     assert refused.json["findings"] == made.json["layout"]["findings"]
 
@@ -190,16 +170,7 @@ def test_a_reason_gives_cutting_files_that_say_what_they_are(faulty_client: Clie
 
     given = faulty_client.get(made.json["links"][name])
 
-    assert list(made.json["links"]) == [
-        "disc.dxf",
-        "record.dxf",
-        "disc.svg",
-        "hits.csv",
-        "work-sheet.pdf",
-        "layout.json",
-        "report.json",
-        "making.json",
-    ]
+    assert list(made.json["links"]) == LASER_FILES
     assert made.json["layout"]["despite_findings"] == "a trial cut"
     assert given.status_code == 200
     assert given.data == f"{name} of Harvest Dance NOT GOOD TO CUT: a trial cut".encode()

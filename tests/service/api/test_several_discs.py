@@ -6,18 +6,7 @@ from pathlib import Path
 import pytest
 from werkzeug.test import TestResponse
 
-from tests.service.fakes import THIN_WEB, TUNE, Client, FakePlanner, client_of
-
-FILES = [
-    "disc.dxf",
-    "record.dxf",
-    "disc.svg",
-    "hits.csv",
-    "work-sheet.pdf",
-    "layout.json",
-    "report.json",
-    "making.json",
-]
+from tests.service.fakes import LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner, client_of
 
 
 def post(client: Client, discs: int = 3, query: str = "", **headers: str) -> TestResponse:
@@ -49,7 +38,7 @@ def test_several_discs_are_several_layouts_each_with_its_own_links(client: Clien
     assert len({disc["fingerprint"] for disc in answer.json["discs"]}) == 3
     for number, disc in enumerate(answer.json["discs"], start=1):
         given = {name: client.get(path).data for name, path in disc["links"].items()}
-        assert list(given) == FILES
+        assert list(given) == LASER_FILES
         assert given["disc.dxf"] == f"disc.dxf of Harvest Dance {number}/3".encode()
 
 
@@ -104,7 +93,7 @@ def test_an_archive_holds_every_file_of_every_disc(client: Client) -> None:
 
     files = unpacked(answer)
     assert (answer.status_code, answer.content_type) == (200, "application/zip")
-    assert len(files) == 3 * len(FILES)
+    assert len(files) == 3 * len(LASER_FILES)
     assert sorted({path.partition("/")[0] for path in files}) == ["1", "2", "3"]
     [drawing] = [path for path in files if path.startswith("2/") and path.endswith(".dxf") and "record" not in path]
     assert files[drawing] == b"disc.dxf of Harvest Dance 2/3"
@@ -163,7 +152,7 @@ def test_a_reason_gives_the_archive_with_the_faulty_disc_marked(half_faulty: Cli
     files = unpacked(answer)
     marked = {path for path in files if "NOT-GOOD-TO-CUT" in path}
     assert {path.partition("/")[0] for path in marked} == {"2"}
-    assert len(marked) == len(FILES)
+    assert len(marked) == len(LASER_FILES)
     assert b"disc.dxf of Harvest Dance 2/3 NOT GOOD TO CUT: trial" in files.values()
     assert 'filename="NOT-GOOD-TO-CUT_harvest-dance_3-discs_' in answer.headers["Content-Disposition"]
 
