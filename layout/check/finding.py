@@ -62,7 +62,6 @@ class Code(StrEnum):
     TURN_DIFFERS = "turn-differs"
     TEMPO_SAGS = "tempo-sags"
     WINDING_TOO_SHORT = "winding-too-short"
-    CLEARING_TURN = "clearing-turn"
     # read back from a drawing
     UNKNOWN_CUT = "unknown-cut"
     CUT_TWICE = "cut-twice"
