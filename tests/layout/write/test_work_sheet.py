@@ -281,18 +281,18 @@ def test_sixty_tracks_and_forty_findings_fit() -> None:
 
 
 def test_errors_stand_before_warnings_and_advice() -> None:
-    advice = without(NEAR_LIMIT, code=Code.CLEARING_TURN, level=Level.ADVICE)
+    advice = without(NEAR_LIMIT, code=Code.LABEL_HIDDEN, level=Level.ADVICE)
 
     words = words_of(sheet_of(ONE_FOLD, findings=(advice, NEAR_LIMIT, THIN_WEB), not_good="trial"))
 
-    places = [words.index(text) for text in ("ERROR web-too-thin", "WARNING margin-unsure", "ADVICE clearing-turn")]
+    places = [words.index(text) for text in ("ERROR web-too-thin", "WARNING margin-unsure", "ADVICE label-hidden")]
     assert places == sorted(places)
     assert "The web between two openings on tracks 4 and 5 is 0.31 mm; the cutter needs 0.5 mm." in words
 
 
 def test_many_findings_of_one_kind_leave_room_for_the_others() -> None:
     crowd = tuple(without(THIN_WEB, message=f"Web {place} is thin.") for place in range(300))
-    advice = without(NEAR_LIMIT, code=Code.CLEARING_TURN, level=Level.ADVICE, message="Let it run out once.")
+    advice = without(NEAR_LIMIT, code=Code.LABEL_HIDDEN, level=Level.ADVICE, message="Let it run out once.")
 
     words = words_of(sheet_of(ONE_FOLD, findings=(*crowd, advice)))
 
