@@ -14,7 +14,7 @@ from layout.check.finding import Code, Finding, Level, Place
 from layout.errors import MidiReadError
 from service.app import create_app
 from service.limits import Limits
-from service.settings import ServiceSettings
+from service.settings import PlaceSettings, ServiceSettings
 
 TUNE = b"MThd a tune"
 BROKEN_TUNE = b"not a tune"
@@ -254,5 +254,5 @@ def _spelt(headers: dict[str, str]) -> dict[str, str]:
 
 def client_of(planner: Any, folder: Path, limits: Limits | None = None) -> Client:
     """A client of a service of its own, its layouts kept in a folder."""
-    settings = ServiceSettings(cache_directory=folder / "layouts", limits=limits or Limits())
+    settings = ServiceSettings(places=PlaceSettings(cache_directory=folder / "layouts"), limits=limits or Limits())
     return Client(create_app(settings, planner=planner).test_client())

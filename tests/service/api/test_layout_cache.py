@@ -10,13 +10,13 @@ import pytest
 from service.api.layout_cache import KeptLayout, LayoutCache
 from service.documents import Inputs, Shipped, Source, Written
 from service.limits import Limits
-from service.settings import ServiceSettings, SettingsError
+from service.settings import PlaceSettings, ServiceSettings, SettingsError
 
 FAR_PAST_NS = 1_000_000_000  # one second after the epoch: older than anything written now
 
 
 def settings(folder: Path, limits: Limits | None = None) -> ServiceSettings:
-    return ServiceSettings(cache_directory=folder / "layouts", limits=limits or Limits())
+    return ServiceSettings(places=PlaceSettings(cache_directory=folder / "layouts"), limits=limits or Limits())
 
 
 def layout(number: int, *, size_bytes: int = 10, movement: Source | None = None) -> KeptLayout:
@@ -140,10 +140,10 @@ from pathlib import Path
 from service.api.layout_cache import KeptLayout, LayoutCache
 from service.documents import Inputs, Shipped
 from service.limits import Limits
-from service.settings import ServiceSettings
+from service.settings import PlaceSettings, ServiceSettings
 
 folder, first = Path(sys.argv[1]), int(sys.argv[2])
-cache = LayoutCache(ServiceSettings(cache_directory=folder, limits=Limits(cache_layouts=5)))
+cache = LayoutCache(ServiceSettings(places=PlaceSettings(cache_directory=folder), limits=Limits(cache_layouts=5)))
 inputs = Inputs(tune=b"MThd", movement=Shipped(id="x"), cutter=Shipped(id="x"), settings=b"{}")
 for turn in range(150):
     fingerprint = f"{(first + turn) % 8:016x}"

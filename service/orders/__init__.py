@@ -1,0 +1,1 @@
+"""The life of an order, apart from HTTP: placed, taken, planned, decided, released, erased."""

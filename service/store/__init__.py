@@ -1,0 +1,1 @@
+"""What the service keeps: rows in a database, files by their digest."""
