@@ -69,6 +69,7 @@ class Store:
         """
         writer = self.engine.execution_options(writes=True)
         with _told(), Session(writer, expire_on_commit=False) as session, session.begin():
+            session.connection()  # the turn begins here, not at the first statement
             yield session
 
     def again(self, work: Callable[[Session], Answer]) -> Answer:
