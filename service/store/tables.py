@@ -179,6 +179,8 @@ class Order(Row):
     hook_id: Mapped[str | None] = mapped_column(ForeignKey("hooks.id"))
     plan_revision: Mapped[int]  # the plan in force; 0 before the first
     reason: Mapped[str | None] = mapped_column(String(500))  # why it failed, was cancelled or needs a person
+    despite_findings: Mapped[str | None] = mapped_column(String(500))  # why it is planned and released all the same
+    despite_by: Mapped[str | None] = mapped_column(String(200))  # who said so
     created_at: Mapped[datetime]
     updated_at: Mapped[datetime]
     finished_at: Mapped[datetime | None]
@@ -296,10 +298,13 @@ class Hook(Row):
     url: Mapped[str] = mapped_column(String(2000))
     types: Mapped[str] = mapped_column(Text)  # types of events, with spaces between; "" for all
     for_all_orders: Mapped[bool]
-    secrets: Mapped[Facts]  # {"current": "whsec_…", "before": null or "whsec_…", "before_until": null or µs}
+    is_test: Mapped[bool]  # made with a test key: told of test orders alone, as the others are of none
+    secrets: Mapped[Facts]  # {"current": "whsec_…", "before": [{"secret": "whsec_…", "until": µs since 1970}]}
     created_at: Mapped[datetime]
     disabled_at: Mapped[datetime | None]
     disabled_because: Mapped[str | None] = mapped_column(String(200))
+    quiet_until: Mapped[datetime | None]  # it asked for fewer messages; none is sent before
+    deleted_at: Mapped[datetime | None]  # kept without address and secret, since orders and deliveries name it
 
 
 class Delivery(Row):
@@ -312,8 +317,8 @@ class Delivery(Row):
     body: Mapped[str] = mapped_column(Text)
     state: Mapped[str] = mapped_column(WORD)  # "waiting", "delivered" or "failed"
     tries: Mapped[int]
-    next_try_at: Mapped[datetime | None]
-    lease_until: Mapped[datetime | None]
+    next_try_at: Mapped[datetime | None]  # while one is sending: the end of its lease
+    lease_until: Mapped[datetime | None]  # set by every take, and part of every guard
     last_status: Mapped[int | None]
     last_error: Mapped[str | None] = mapped_column(String(300))
     created_at: Mapped[datetime]
@@ -321,6 +326,7 @@ class Delivery(Row):
     __table_args__ = (
         UniqueConstraint("hook_id", "event_seq"),
         Index("ix_deliveries_work", "state", "next_try_at"),
+        Index("ix_deliveries_due", "hook_id", "state", "next_try_at"),  # the first due of each hook, at once
         Index("ix_deliveries_hook", "hook_id", "id"),
     )
 

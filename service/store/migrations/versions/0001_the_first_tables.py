@@ -62,10 +62,13 @@ def upgrade() -> None:
         sa.Column("url", sa.String(length=2000), nullable=False),
         sa.Column("types", sa.Text(), nullable=False),
         sa.Column("for_all_orders", sa.Boolean(), nullable=False),
+        sa.Column("is_test", sa.Boolean(), nullable=False),
         sa.Column("secrets", sa.JSON(), nullable=False),
         sa.Column("created_at", Moment(), nullable=False),
         sa.Column("disabled_at", Moment(), nullable=True),
         sa.Column("disabled_because", sa.String(length=200), nullable=True),
+        sa.Column("quiet_until", Moment(), nullable=True),
+        sa.Column("deleted_at", Moment(), nullable=True),
         sa.ForeignKeyConstraint(["owner_id"], ["owners.id"], name=op.f("fk_hooks_owner_id_owners")),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_hooks")),
     )
@@ -217,6 +220,8 @@ def upgrade() -> None:
         sa.Column("hook_id", sa.String(length=48), nullable=True),
         sa.Column("plan_revision", sa.Integer(), nullable=False),
         sa.Column("reason", sa.String(length=500), nullable=True),
+        sa.Column("despite_findings", sa.String(length=500), nullable=True),
+        sa.Column("despite_by", sa.String(length=200), nullable=True),
         sa.Column("created_at", Moment(), nullable=False),
         sa.Column("updated_at", Moment(), nullable=False),
         sa.Column("finished_at", Moment(), nullable=True),
@@ -306,6 +311,7 @@ def upgrade() -> None:
         sa.UniqueConstraint("hook_id", "event_seq", name=op.f("uq_deliveries_hook_id_event_seq")),
     )
     with op.batch_alter_table("deliveries", schema=None) as batch_op:
+        batch_op.create_index("ix_deliveries_due", ["hook_id", "state", "next_try_at"], unique=False)
         batch_op.create_index(batch_op.f("ix_deliveries_event_seq"), ["event_seq"], unique=False)
         batch_op.create_index("ix_deliveries_hook", ["hook_id", "id"], unique=False)
         batch_op.create_index("ix_deliveries_work", ["state", "next_try_at"], unique=False)
@@ -318,6 +324,7 @@ def downgrade() -> None:
         batch_op.drop_index("ix_deliveries_work")
         batch_op.drop_index("ix_deliveries_hook")
         batch_op.drop_index(batch_op.f("ix_deliveries_event_seq"))
+        batch_op.drop_index("ix_deliveries_due")
 
     op.drop_table("deliveries")
     op.drop_table("run_items")
