@@ -8,6 +8,7 @@ from layout.documents.shipped import (
     shipped_cutter_ids,
     shipped_movement,
     shipped_movement_ids,
+    shipped_text,
 )
 
 __all__ = [
@@ -21,4 +22,5 @@ __all__ = [
     "shipped_cutter_ids",
     "shipped_movement",
     "shipped_movement_ids",
+    "shipped_text",
 ]

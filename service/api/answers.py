@@ -6,7 +6,8 @@ from typing import Any
 
 from flask import Request, Response
 
-JSON_MEDIA_TYPE = "application/json"
+from service.media_types import JSON_MEDIA_TYPE
+
 # Nothing the service gives may load or run anything; an SVG needs its own styles to be seen.
 NOTHING_LOADS = "default-src 'none'"
 ONLY_OWN_STYLES = "default-src 'none'; style-src 'unsafe-inline'"

@@ -11,28 +11,18 @@ from urllib.parse import urlencode
 from flask import Blueprint, Request, Response, request
 
 from layout.walk import CUTTING_FILES, FILES, files_for
-from service.api.answers import JSON_MEDIA_TYPE, ONLY_OWN_STYLES, json_response
+from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.desk import LayoutDesk
-from service.api.download_names import ALL_FILES, NamedDisc, content_disposition, download_name
 from service.api.layout_cache import KeptLayout
 from service.api.parameters import read_query
 from service.api.posted import read_posted
 from service.api.problems import ProblemError
+from service.download_names import ALL_FILES, NamedDisc, content_disposition, download_name
 from service.limits import Limits
+from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES
 
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
-MEDIA_TYPES = {
-    "disc.dxf": "image/vnd.dxf",
-    "record.dxf": "image/vnd.dxf",
-    "disc.svg": "image/svg+xml",
-    "hits.csv": "text/csv; charset=utf-8",
-    "layout.json": JSON_MEDIA_TYPE,
-    "report.json": JSON_MEDIA_TYPE,
-    "press.nc": "text/plain; charset=us-ascii",  # ISO 6983 has no media type of its own
-    "work-sheet.pdf": "application/pdf",
-    "making.json": JSON_MEDIA_TYPE,
-}
 # What a POST can answer with, by media type; the first where the client does not mind.
 ANSWERS: dict[str, str | None] = {
     JSON_MEDIA_TYPE: None,

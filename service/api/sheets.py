@@ -12,14 +12,14 @@ from flask import Blueprint, Request, Response, request
 from layout.documents.sheets import LIMITS, read_sheet_job
 from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
 from layout.sheets.plan import SheetPlan
-from service.api.answers import JSON_MEDIA_TYPE
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
-from service.api.download_names import slug
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import read_query
 from service.api.problems import ProblemError
+from service.download_names import slug
 from service.limits import Limits
+from service.media_types import JSON_MEDIA_TYPE
 
 ANSWERS = (JSON_MEDIA_TYPE, ZIP_MEDIA_TYPE)
 FORM_MEDIA_TYPE = "multipart/form-data"

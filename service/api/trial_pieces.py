@@ -8,7 +8,7 @@ from flask import Blueprint, Request, Response, request
 
 from layout.documents import Cutter, Movement, shipped_movement_ids
 from layout.trial_walk import trial_files
-from service.api.answers import JSON_MEDIA_TYPE, json_response
+from service.api.answers import json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.failures import too_large
 from service.api.multipart import parts_of
@@ -17,6 +17,7 @@ from service.api.posted import source_of
 from service.api.problems import ProblemError
 from service.documents import cutter_from, default_cutter, movement_from
 from service.limits import Limits
+from service.media_types import JSON_MEDIA_TYPE
 
 FORM_MEDIA_TYPE = "multipart/form-data"
 DOCUMENT_PARTS = ("movement", "cutter")

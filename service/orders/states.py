@@ -1,11 +1,12 @@
 """The states of an order, and what may follow what.
 
-    received → planning → ready ─────→ released
-                 │  ↑        │  ↖          │
-                 │  └ again  │   replan ───┘
-                 ├→ attention ─→ released (despite findings: only with the scope and a reason)
-                 └→ failed
-    any but released → cancelled; released → cancelled only where the shop confirms the recall
+    received → planning → ready → released → received (replanned: the released plan is superseded)
+               planning → released (asked for beforehand, and nothing stands; or despite findings, with a reason)
+               planning → attention → released, or → received (replanned, or to be made despite findings)
+               planning → failed → received (replanned)
+               planning → received (handed back by a worker that stops, or taken from one that never came back)
+    received → released (a repeat: the stored files again)
+    any → cancelled; released → cancelled only where the shop confirms the recall
 
 Clients ignore states they do not know: more may come.
 """
@@ -27,7 +28,9 @@ class State(StrEnum):
 
 MAY_FOLLOW: dict[State, frozenset[State]] = {
     State.RECEIVED: frozenset({State.PLANNING, State.RELEASED, State.FAILED, State.CANCELLED}),
-    State.PLANNING: frozenset({State.RECEIVED, State.ATTENTION, State.READY, State.FAILED, State.CANCELLED}),
+    State.PLANNING: frozenset(
+        {State.RECEIVED, State.ATTENTION, State.READY, State.RELEASED, State.FAILED, State.CANCELLED}
+    ),
     State.ATTENTION: frozenset({State.RECEIVED, State.RELEASED, State.CANCELLED}),
     State.READY: frozenset({State.RECEIVED, State.RELEASED, State.CANCELLED}),
     State.RELEASED: frozenset({State.RECEIVED, State.CANCELLED}),

@@ -30,7 +30,7 @@ def shipped_movement(movement_id: str) -> Movement:
     """
     if movement_id not in _MOVEMENTS:
         raise NotShippedError(document="movement", document_id=movement_id, known_ids=_MOVEMENTS)
-    return read_movement(files(__package__).joinpath(f"{movement_id}.json").read_bytes())
+    return read_movement(shipped_text(movement_id))
 
 
 @cache
@@ -42,4 +42,16 @@ def shipped_cutter(cutter_id: str) -> Cutter:
     """
     if cutter_id not in _CUTTERS:
         raise NotShippedError(document="cutter", document_id=cutter_id, known_ids=_CUTTERS)
-    return read_cutter(files(__package__).joinpath(f"{cutter_id}.json").read_bytes())
+    return read_cutter(shipped_text(cutter_id))
+
+
+def shipped_text(document_id: str) -> bytes:
+    """The text of a shipped movement or cutter as it was written, with what it says of the worth of its numbers.
+
+    Raises:
+        NotShippedError: There is none of that id; names the ids there are.
+    """
+    known = _MOVEMENTS + _CUTTERS
+    if document_id not in known:
+        raise NotShippedError(document="document", document_id=document_id, known_ids=known)
+    return files(__package__).joinpath(f"{document_id}.json").read_bytes()

@@ -3,7 +3,7 @@ from urllib.parse import unquote
 import pytest
 
 from layout.documents import shipped_cutter, shipped_movement
-from service.api.download_names import NamedDisc, content_disposition, download_name, slug
+from service.download_names import NamedDisc, content_disposition, download_name, slug
 
 
 def disc(title: str = "Harvest Dance", *, not_good: bool = False) -> NamedDisc:
