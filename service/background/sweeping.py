@@ -1,0 +1,65 @@
+"""The sweep: finds orders whose message was lost, or whose worker has gone, and offers them to this worker's slots."""
+
+import logging
+import threading
+import time
+from collections import deque
+
+from service.orders.taking import waiting
+from service.store.store import Store
+
+OFFERS_OF_A_SLOT = 8  # orders found at a time for each slot: few, for other workers find the same ones
+LEAST_S = 1.0  # s; between two sweeps, however much there is to find
+
+log = logging.getLogger(__name__)
+
+
+class Sweep:
+    """Orders that wait, found in the database itself: whatever becomes of the queue, they are planned."""
+
+    def __init__(self, store: Store, slot_count: int) -> None:
+        """Begin with nothing found.
+
+        Args:
+            store: The database.
+            slot_count: How many slots are offered what is found.
+        """
+        self._store = store
+        self._most = OFFERS_OF_A_SLOT * slot_count
+        self._sweeping = threading.Lock()
+        self._found: deque[str] = deque()
+        self._is_full = False
+        self._swept_at_s = -LEAST_S
+
+    def sweep(self) -> None:
+        """Look for orders that wait too long, once.
+
+        Raises:
+            StoreBusyError: The database does not answer.
+        """
+        with self._sweeping:
+            self._look()
+
+    def sweep_on(self) -> None:
+        """Look again where the last look found as much as it may and all of it is taken: a queue that was lost."""
+        if self._is_full and not self._found and self._sweeping.acquire(blocking=False):
+            try:
+                if time.monotonic() - self._swept_at_s >= LEAST_S:
+                    self._look()
+            finally:
+                self._sweeping.release()
+
+    def next_found(self) -> str | None:
+        """An order to take, None where there is none; each is offered to one slot."""
+        try:
+            return self._found.popleft()
+        except IndexError:
+            return None
+
+    def _look(self) -> None:
+        ids = waiting(self._store, most=self._most)
+        self._swept_at_s = time.monotonic()
+        self._is_full = len(ids) == self._most
+        self._found = deque(ids)
+        if ids:
+            log.info("%d orders wait too long or have lost their worker; they are taken up", len(ids))
