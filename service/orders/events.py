@@ -6,6 +6,7 @@ from typing import Any
 from sqlalchemy import update
 from sqlalchemy.orm import Session
 
+from service.hooks.outbox import write_deliveries
 from service.orders.states import EventType
 from service.store.tables import Counter, Event, Order
 
@@ -15,7 +16,7 @@ EVENTS = "events"  # the counter's name
 def add_event(
     session: Session, order: Order, kind: EventType, *, at: datetime, by: str | None = None, data: dict[str, Any]
 ) -> Event:
-    """Write an event of an order into the transaction that makes it true.
+    """Write an event of an order, and the messages to hooks about it, into the transaction that makes it true.
 
     The counter's row stays locked until the commit: whoever has seen event n will never see one before n appear.
 
@@ -32,4 +33,5 @@ def add_event(
     event = Event(seq=seq, order_id=order.id, owner_id=order.owner_id, type=kind.value, at=at, by=by, data=data)
     session.add(event)
     session.flush()
+    write_deliveries(session, event, order)
     return event

@@ -1,0 +1,187 @@
+"""One POST to one address that was looked at, bounded in time and size."""
+
+import http.client
+import socket
+import ssl
+import threading
+from collections.abc import Mapping, Sequence
+from contextlib import suppress
+from dataclasses import dataclass
+from types import TracebackType
+from typing import Self
+
+from urllib3.connection import HTTPConnection, HTTPSConnection
+from urllib3.exceptions import ConnectTimeoutError, HTTPError, NewConnectionError
+
+from service.hooks.guard import Target
+
+CONNECT_S = 5.0  # s; a machine that does not pick up by then will hardly take a message
+MOST_ADDRESSES = 3  # tried one after another where nobody picks up, all within the same time
+BODY_READ_BYTES = 4096  # of an answer's body; it decides nothing, so the rest is left
+
+
+class PostError(Exception):
+    """No answer came; the text says why, and nothing of what the other side said."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Answer:
+    """What a hook answered.
+
+    Attributes:
+        status: Of HTTP.
+        retry_after: The header field of that name as it came, None where there is none.
+    """
+
+    status: int
+    retry_after: str | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Message:
+    """What is posted.
+
+    Attributes:
+        headers: Beside Host and Content-Length.
+        body: The bytes.
+    """
+
+    headers: Mapping[str, str]
+    body: bytes
+
+
+def post(target: Target, addresses: Sequence[str], message: Message, *, tls: ssl.SSLContext, within_s: float) -> Answer:
+    """Post a message and hear the answer's status. Redirects are not followed, proxies not asked.
+
+    Args:
+        target: Where to; over TLS the certificate must be good for its host.
+        addresses: Of the host, checked; nothing else is connected to.
+        message: What to post.
+        tls: Whose certificates are believed.
+        within_s: Seconds for all of it, from connecting to the end of the answer's head.
+
+    Raises:
+        PostError: No answer came in time, or none that is HTTP.
+    """
+    with _Deadline(within_s) as deadline:
+        try:
+            connection = _connected(target, addresses[:MOST_ADDRESSES], tls, deadline)
+            try:
+                return _asked(connection, target, message, within_s)
+            finally:
+                connection.close()
+        except (HTTPError, http.client.HTTPException, OSError, ValueError) as fault:
+            raise PostError(_told(fault, deadline, within_s)) from fault
+
+
+class _Deadline:
+    """Cuts a connection when its time is up, however slowly the other side goes on sending."""
+
+    def __init__(self, within_s: float) -> None:
+        self.is_over = False
+        self._lock = threading.Lock()
+        self._held: list[socket.socket] = []
+        self._timer = threading.Timer(within_s, self._cut)
+        self._timer.daemon = True
+
+    def __enter__(self) -> Self:
+        self._timer.start()
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        self._timer.cancel()
+        with self._lock:
+            for one in self._held:
+                one.close()
+            self._held.clear()
+
+    def hold(self, connected: socket.socket) -> None:
+        """Cut this one too; a second handle is kept, since TLS takes the first."""
+        with self._lock:
+            self._held.append(connected.dup())
+        if self.is_over:
+            self._cut()
+
+    def _cut(self) -> None:
+        with self._lock:
+            self.is_over = True
+            for one in self._held:
+                with suppress(OSError):  # the other side was quicker
+                    one.shutdown(socket.SHUT_RDWR)
+
+
+class _Plain(HTTPConnection):
+    deadline: _Deadline
+
+    def _new_conn(self) -> socket.socket:
+        connected = super()._new_conn()
+        self.deadline.hold(connected)
+        return connected
+
+
+class _Secure(HTTPSConnection):
+    deadline: _Deadline
+
+    def _new_conn(self) -> socket.socket:
+        connected = super()._new_conn()
+        self.deadline.hold(connected)
+        return connected
+
+
+def _connected(target: Target, addresses: Sequence[str], tls: ssl.SSLContext, deadline: _Deadline) -> HTTPConnection:
+    """A connection to the first address that picks up."""
+    fault: HTTPError | None = None
+    for address in addresses:
+        connection: _Plain | _Secure
+        if target.scheme == "https":
+            connection = _Secure(address, target.port, timeout=CONNECT_S, ssl_context=tls, server_hostname=target.host)
+        else:
+            connection = _Plain(address, target.port, timeout=CONNECT_S)
+        connection.deadline = deadline
+        try:
+            connection.connect()
+        except (NewConnectionError, ConnectTimeoutError) as nobody:
+            fault = nobody
+            if deadline.is_over:
+                break
+            continue
+        except BaseException:
+            connection.close()
+            raise
+        return connection
+    raise fault or ConnectTimeoutError("no address")
+
+
+def _asked(connection: HTTPConnection, target: Target, message: Message, within_s: float) -> Answer:
+    connection.timeout = within_s  # the deadline cuts what is slower in all
+    headers = {"Host": target.authority, "Connection": "close", **message.headers}
+    connection.request(
+        "POST", target.path, body=message.body, headers=headers, preload_content=False, decode_content=False
+    )
+    response = connection.getresponse()
+    with suppress(HTTPError, http.client.HTTPException, OSError, ValueError):
+        # The status was said: a body that breaks off takes nothing back.
+        response.read(BODY_READ_BYTES, decode_content=False)
+    return Answer(status=response.status, retry_after=response.headers.get("Retry-After"))
+
+
+def _told(fault: Exception, deadline: _Deadline, within_s: float) -> str:
+    """Why no answer came: the kind of it alone, since the other side's words are not ours to keep."""
+    if deadline.is_over or isinstance(fault, TimeoutError):
+        return f"no answer within {within_s:g} s"
+    if isinstance(fault, NewConnectionError | ConnectTimeoutError):
+        return "nobody picked up at the host's addresses"
+    if isinstance(fault, ssl.SSLCertVerificationError) or isinstance(fault.__cause__, ssl.SSLCertVerificationError):
+        return f"the certificate is not good for this host: {_verdict(fault)}"
+    if isinstance(fault, ssl.SSLError):
+        return "TLS could not be agreed on"
+    if isinstance(fault, http.client.HTTPException) and not isinstance(fault, http.client.RemoteDisconnected):
+        return "what came back is not HTTP"
+    return "the connection broke before an answer came"
+
+
+def _verdict(fault: Exception) -> str:
+    error = fault if isinstance(fault, ssl.SSLCertVerificationError) else fault.__cause__
+    return str(getattr(error, "verify_message", "refused"))
