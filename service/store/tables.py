@@ -100,19 +100,19 @@ class BrowserSession(Row):
 
 
 class StoredDocument(Row):
-    """One revision of a movement or a cutter; the one in force is the highest."""
+    """One revision of a movement or a cutter; the one in force is the highest. Each owner has ids of its own."""
 
     __tablename__ = "stored_documents"
+    owner_id: Mapped[str] = mapped_column(ForeignKey("owners.id"))  # the shop's are everybody's to use
     kind: Mapped[str] = mapped_column(String(16))  # "movement" or "cutter"
     id: Mapped[str] = mapped_column(String(64))  # as the document says
     revision: Mapped[int]
     body: Mapped[str] = mapped_column(Text)  # as it was written, with what it says of the worth of numbers
     digest: Mapped[str] = mapped_column(DIGEST)
-    owner_id: Mapped[str] = mapped_column(ForeignKey("owners.id"))
     key_id: Mapped[str | None] = mapped_column(ForeignKey("keys.id"))
     created_at: Mapped[datetime]
     withdrawn_at: Mapped[datetime | None]  # not offered any more; orders that name it keep it
-    __table_args__ = (PrimaryKeyConstraint("kind", "id", "revision"),)
+    __table_args__ = (PrimaryKeyConstraint("owner_id", "kind", "id", "revision"),)
 
 
 class StoredFile(Row):

@@ -181,18 +181,18 @@ def upgrade() -> None:
 
     op.create_table(
         "stored_documents",
+        sa.Column("owner_id", sa.String(length=48), nullable=False),
         sa.Column("kind", sa.String(length=16), nullable=False),
         sa.Column("id", sa.String(length=64), nullable=False),
         sa.Column("revision", sa.Integer(), nullable=False),
         sa.Column("body", sa.Text(), nullable=False),
         sa.Column("digest", sa.String(length=64), nullable=False),
-        sa.Column("owner_id", sa.String(length=48), nullable=False),
         sa.Column("key_id", sa.String(length=48), nullable=True),
         sa.Column("created_at", Moment(), nullable=False),
         sa.Column("withdrawn_at", Moment(), nullable=True),
         sa.ForeignKeyConstraint(["key_id"], ["keys.id"], name=op.f("fk_stored_documents_key_id_keys")),
         sa.ForeignKeyConstraint(["owner_id"], ["owners.id"], name=op.f("fk_stored_documents_owner_id_owners")),
-        sa.PrimaryKeyConstraint("kind", "id", "revision", name=op.f("pk_stored_documents")),
+        sa.PrimaryKeyConstraint("owner_id", "kind", "id", "revision", name=op.f("pk_stored_documents")),
     )
     op.create_table(
         "orders",
