@@ -67,17 +67,18 @@ def post(target: Target, addresses: Sequence[str], message: Message, *, tls: ssl
         try:
             connection = _connected(target, addresses[:MOST_ADDRESSES], tls, deadline)
             try:
-                return _asked(connection, target, message, within_s)
+                return _asked(connection, target, message, deadline)
             finally:
                 connection.close()
         except (HTTPError, http.client.HTTPException, OSError, ValueError) as fault:
-            raise PostError(_told(fault, deadline, within_s)) from fault
+            raise PostError(_told(fault, deadline)) from fault
 
 
 class _Deadline:
     """Cuts a connection when its time is up, however slowly the other side goes on sending."""
 
     def __init__(self, within_s: float) -> None:
+        self.within_s = within_s
         self.is_over = False
         self._lock = threading.Lock()
         self._held: list[socket.socket] = []
@@ -154,23 +155,24 @@ def _connected(target: Target, addresses: Sequence[str], tls: ssl.SSLContext, de
     raise fault or ConnectTimeoutError("no address")
 
 
-def _asked(connection: HTTPConnection, target: Target, message: Message, within_s: float) -> Answer:
-    connection.timeout = within_s  # the deadline cuts what is slower in all
+def _asked(connection: HTTPConnection, target: Target, message: Message, deadline: _Deadline) -> Answer:
+    connection.timeout = deadline.within_s  # of each wait; the deadline cuts what is slower in all
     headers = {"Host": target.authority, "Connection": "close", **message.headers}
-    connection.request(
-        "POST", target.path, body=message.body, headers=headers, preload_content=False, decode_content=False
-    )
-    response = connection.getresponse()
-    with suppress(HTTPError, http.client.HTTPException, OSError, ValueError):
+    connection.request("POST", target.path, body=message.body, headers=headers)
+    # The library's own response would write the URL, which may hold a secret, into the log of a malformed head.
+    response = http.client.HTTPConnection.getresponse(connection)
+    if deadline.is_over:
+        raise TimeoutError  # the head was cut, which reads as its end
+    with suppress(http.client.HTTPException, OSError, ValueError):
         # The status was said: a body that breaks off takes nothing back.
-        response.read(BODY_READ_BYTES, decode_content=False)
+        response.read(BODY_READ_BYTES)
     return Answer(status=response.status, retry_after=response.headers.get("Retry-After"))
 
 
-def _told(fault: Exception, deadline: _Deadline, within_s: float) -> str:
+def _told(fault: Exception, deadline: _Deadline) -> str:
     """Why no answer came: the kind of it alone, since the other side's words are not ours to keep."""
     if deadline.is_over or isinstance(fault, TimeoutError):
-        return f"no answer within {within_s:g} s"
+        return f"no answer within {deadline.within_s:g} s"
     if isinstance(fault, NewConnectionError | ConnectTimeoutError):
         return "nobody picked up at the host's addresses"
     if isinstance(fault, ssl.SSLCertVerificationError) or isinstance(fault.__cause__, ssl.SSLCertVerificationError):

@@ -1,8 +1,11 @@
 """Owners, orders and hooks, as rows that tests of hooks stand on."""
 
+from dataclasses import replace
 from datetime import UTC, datetime
+from ipaddress import ip_network
 from typing import Any
 
+from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from service.hooks.deliveries import Holder
@@ -10,8 +13,9 @@ from service.hooks.keeping import HookWish, HookWithSecret, add_hook
 from service.orders.events import add_event
 from service.orders.states import EventType, State
 from service.parts import Parts
+from service.settings import HookSettings
 from service.store.ids import new_id
-from service.store.tables import Event, Order, Owner
+from service.store.tables import Delivery, Event, Order, Owner
 
 NOW = datetime(2026, 12, 2, 10, 0, 0, 250_000, tzinfo=UTC)
 DIGEST = "0" * 64
@@ -78,3 +82,15 @@ def make_hook(
     wish = HookWish(url=url, types=types, for_all_orders=for_all_orders)
     with parts.store.writing() as session:
         return add_hook(session, Holder(owner_id=owner_id, is_test=is_test), wish, now=NOW)
+
+
+def reaching_loopback(parts: Parts, *, timeout_s: int = 5) -> Parts:
+    """The same parts, with this machine as a network of the shop's own."""
+    hooks = HookSettings(networks=(ip_network("127.0.0.0/8"),), allow_http=True, timeout_s=timeout_s)
+    return replace(parts, settings=replace(parts.settings, hooks=hooks))
+
+
+def only_delivery(parts: Parts) -> Delivery:
+    """The one delivery there is."""
+    with parts.store.reading() as session:
+        return session.scalars(select(Delivery)).one()

@@ -10,17 +10,12 @@ from service.hooks.types import MEANINGS, ORDER_TYPES, TEST_TYPE
 from service.orders.states import EventType
 from service.parts import Parts
 from service.store.tables import Delivery, Hook
-from tests.service.hooks.rows import NOW, add_owner, make_hook, new_order, place, tell_of
+from tests.service.hooks.rows import NOW, add_owner, make_hook, new_order, only_delivery, place, tell_of
 
 
 def told_hooks(parts: Parts) -> list[str]:
     with parts.store.reading() as session:
         return list(session.scalars(select(Delivery.hook_id).order_by(Delivery.hook_id)))
-
-
-def only_delivery(parts: Parts) -> Delivery:
-    with parts.store.reading() as session:
-        return session.scalars(select(Delivery)).one()
 
 
 def test_every_type_of_event_is_published_with_its_meaning() -> None:
