@@ -92,7 +92,13 @@ class AccessSettings:
         yes_or_no,
         "whether layouts, trial pieces and sheets may be asked for without a key",
         default=None,
-        shown="yes on loopback, else no",
+        shown="yes for this machine's own programs where the service listens on loopback, else no",
+    )
+    listens_on_loopback: bool = variable(
+        "DISCWRIGHT_ON_LOOPBACK",
+        yes_or_no,
+        "whether the service listens on this machine's own addresses alone; serve and web set it",
+        default=False,
     )
     read_rate: tuple[int, int] = variable(
         "DISCWRIGHT_READ_RATE", rate, "requests that read, of one key, in so many seconds", default=(1200, 60)

@@ -186,6 +186,14 @@ def list_keys(
         return tuple(_told(key, _owner_told(owner)) for key, owner in session.execute(wanted.limit(most)))
 
 
+def key_of_id(store: Store, key_id: str) -> KeyTold | None:
+    """The key of an id, in force or not; None where there is none."""
+    wanted = _keys_and_owners().where(Key.id == key_id)
+    with store.reading() as session:
+        row = session.execute(wanted).first() if KEY_ID.fullmatch(key_id) else None
+        return None if row is None else _told(row[0], _owner_told(row[1]))
+
+
 def revoke_key(store: Store, key_id: str, now: datetime, *, owner_id: str | None = None) -> KeyTold | None:
     """Make a key open nothing any more, nor the browsers signed in as it. A revoked one stays as it is.
 

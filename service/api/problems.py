@@ -144,6 +144,53 @@ _KINDS = (
         what_to_do="Check how the request is made; detail says what is known.",
     ),
     ProblemKind(
+        name="key-missing",
+        status=401,
+        title="The request shows no key",
+        what_to_do="Add the header  Authorization: Bearer KEY. `discwright keys add` makes a key; a browser is signed "
+        "in by POST /sign-in.",
+    ),
+    ProblemKind(
+        name="key-refused",
+        status=401,
+        title="The key shown is not in force",
+        what_to_do="Check that the whole key is sent, from dw_ to its end. A key that was revoked stays so; ask the "
+        "shop for another.",
+    ),
+    ProblemKind(
+        name="scope-missing",
+        status=403,
+        title="The key may not do this",
+        what_to_do="scope says what the key would have to be allowed. Use a key that has it, or ask the shop for one; "
+        "the scopes of a key are never changed.",
+    ),
+    ProblemKind(
+        name="write-not-vouched",
+        status=403,
+        title="A browser's write does not show that it comes from the service's own pages",
+        what_to_do="Load the page again and send from there. Programs send a key in the header Authorization, and no "
+        "cookie.",
+    ),
+    ProblemKind(
+        name="sign-in-refused",
+        status=403,
+        title="The link or the key signs nobody in",
+        what_to_do="A link works once, within 15 minutes. Sign in by POST /sign-in with a key in force instead.",
+    ),
+    ProblemKind(
+        name="key-unknown",
+        status=404,
+        title="No key has this id",
+        what_to_do="GET /v1/keys lists the keys there are.",
+    ),
+    ProblemKind(
+        name="too-many-requests",
+        status=429,
+        title="Requests come too often",
+        what_to_do="Wait the seconds that Retry-After says, then ask again; RateLimit tells in every answer how many "
+        "requests are left.",
+    ),
+    ProblemKind(
         name="internal-error",
         status=500,
         title="The service failed",

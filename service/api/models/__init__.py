@@ -1,0 +1,1 @@
+"""What requests may say and answers say, one module for each resource: what validates is what is documented."""

@@ -1,0 +1,68 @@
+"""From what a request says to a checked model, every fault told with its place."""
+
+from typing import TypeVar
+
+from flask import Request
+from pydantic import ValidationError
+
+from layout.documents.reading import Part, check_document, read_json
+from layout.errors import DocumentError, Problem
+from service.api.failures import too_large
+from service.api.problems import ProblemError
+from service.media_types import JSON_MEDIA_TYPE
+
+ModelT = TypeVar("ModelT", bound=Part)
+
+
+def read_body(asked: Request, model: type[ModelT], *, document: str, most_bytes: int) -> ModelT:
+    """The JSON body of a request, checked.
+
+    Args:
+        asked: The request; its body is read.
+        model: What the body must be.
+        document: Word for it in messages.
+        most_bytes: How large it may be.
+
+    Raises:
+        ProblemError: It is of another media type, or too large.
+        DocumentError: It is not valid; each fault with its JSON pointer.
+    """
+    if asked.mimetype != JSON_MEDIA_TYPE:
+        raise ProblemError(
+            name="media-type-unsupported",
+            detail=f"{asked.mimetype[:100] or 'a body without a media type'!r} is not taken; send {JSON_MEDIA_TYPE}",
+            more={"allowed_types": [JSON_MEDIA_TYPE]},
+            headers={"Accept-Post": JSON_MEDIA_TYPE},
+        )
+    body = asked.stream.read(most_bytes + 1)
+    if len(body) > most_bytes:
+        raise too_large(most_bytes, f"the {document}")
+    value, stated = read_json(body, document=document)
+    if stated:  # the worth of a measured number; there are none here
+        faults = tuple(Problem(pointer=place, message="a plain value is needed, got an object") for place in stated)
+        raise DocumentError(document=document, problems=faults)
+    return check_document(model, value, document=document)
+
+
+def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
+    """The query of a request, checked.
+
+    Raises:
+        ProblemError: A parameter is unknown, comes twice, or has a value that is not allowed.
+    """
+    known = ", ".join(model.model_fields)
+    for name, values in asked.args.lists():
+        if name not in model.model_fields:
+            raise _invalid(name, f"there is no parameter called {name[:100]!r} here; known are {known}")
+        if len(values) > 1:
+            raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
+    try:
+        return model.model_validate(asked.args.to_dict())
+    except ValidationError as error:
+        fault = error.errors(include_url=False)[0]
+        name, seen = str(fault["loc"][0]), str(fault["input"])[:100]
+        raise _invalid(name, f"{name} is {seen!r}: {fault['msg'].removeprefix('Value error, ')}") from error
+
+
+def _invalid(name: str, detail: str) -> ProblemError:
+    return ProblemError(name="parameter-invalid", detail=detail, more={"parameter": name})

@@ -1,0 +1,86 @@
+"""/sign-in and /sign-out: how a browser is let in, and leaves."""
+
+from collections.abc import Callable
+from datetime import datetime, timedelta
+
+from flask import Blueprint, Response, request
+
+from service.access.asker import Asker
+from service.access.browsers import SignedIn, sign_in_as, sign_in_by_link, sign_out
+from service.access.keys import find_key
+from service.api.asking import needs_any_key, open_but_counted
+from service.api.own_pages import FORM_MEDIA_TYPE, clear_cookie, cookie_of, from_elsewhere, set_cookie
+from service.api.problems import ProblemError
+from service.parts import Parts
+
+FIRST_PAGE = "/"
+
+
+def sign_in_routes(parts: Parts, clock: Callable[[], datetime]) -> Blueprint:
+    """The routes by which browsers are signed in and out.
+
+    Args:
+        parts: Read for the database and the settings.
+        clock: The moment, in UTC.
+    """
+    routes = Blueprint("sign_in", __name__)
+    store, public_url = parts.store, parts.settings.places.public_url
+    lasts = timedelta(hours=parts.settings.access.session_hours)
+
+    def first_page(signed_in: SignedIn) -> Response:
+        response = _led_on()
+        set_cookie(response, request, signed_in, public_url)
+        return response
+
+    @routes.get("/sign-in/<secret>")
+    @open_but_counted
+    def use_link(secret: str) -> Response:
+        # Whoever only looks ahead, as browsers and mail programs do, must not use the link up.
+        ahead = request.method == "HEAD" or "prefetch" in request.headers.get("Sec-Purpose", "")
+        signed_in = None if ahead else sign_in_by_link(store, secret, clock(), lasts)
+        if signed_in is None:
+            raise ProblemError(
+                name="sign-in-refused",
+                detail="the link was used, is older than 15 minutes, or was never made",
+                headers={"Referrer-Policy": "no-referrer"},
+            )
+        return first_page(signed_in)
+
+    @routes.post("/sign-in")
+    @open_but_counted
+    def sign_in() -> Response:
+        elsewhere = from_elsewhere(request, public_url)
+        if elsewhere is not None:  # another site must not sign a person in as somebody else
+            raise ProblemError(name="write-not-vouched", detail=elsewhere)
+        if request.mimetype != FORM_MEDIA_TYPE:
+            raise ProblemError(
+                name="media-type-unsupported",
+                detail=f"{request.mimetype[:100] or 'a body without a media type'!r} is not taken; "
+                f"send the field key as {FORM_MEDIA_TYPE}",
+                more={"allowed_types": [FORM_MEDIA_TYPE]},
+                headers={"Accept-Post": FORM_MEDIA_TYPE},
+            )
+        key = find_key(store, request.form.get("key", "").strip())
+        if key is None:
+            raise ProblemError(name="sign-in-refused", detail="the field key holds no key that is in force")
+        return first_page(sign_in_as(store, key, clock(), lasts))
+
+    @routes.post("/sign-out")
+    @needs_any_key
+    def leave(_: Asker) -> Response:
+        cookie = cookie_of(request, public_url)
+        if cookie:
+            sign_out(store, cookie)
+        response = _led_on()
+        clear_cookie(response, request, public_url)
+        return response
+
+    return routes
+
+
+def _led_on() -> Response:
+    """An answer that leads to the first page by GET (RFC 9110 section 15.4.4) and tells nobody where from."""
+    response = Response(status=303, headers={"Location": FIRST_PAGE})
+    response.headers["Referrer-Policy"] = "no-referrer"
+    response.headers["Cache-Control"] = "no-store"
+    return response
