@@ -91,11 +91,10 @@ class Queue:
         return int(self._do(lambda storage: storage.queue_size()))
 
     def close(self) -> None:
-        """Let the connection of this thread and the shared one go."""
+        """Let this thread's connection and the shared one go; whoever uses the queue again opens it again."""
         with self._opening:
             if self._storage is not None:
                 self._storage.close()
-                self._storage = None
 
     def _do(self, work: Callable[[BaseStorage], Any]) -> Any:
         if time.monotonic() < self._away_until_s:

@@ -71,6 +71,7 @@ class Slot:
                     self._shared.stopping.wait(PAUSE_S)
         finally:
             self._end_child()
+            self._shared.queue.close()
 
     def _turn(self) -> None:
         # Without a child no order is taken: a broken installation must not cost orders their attempts.

@@ -95,8 +95,6 @@ class Worker:
             slot.join(max(0.0, begun_s + self._within_s - time.monotonic()))
         in_time = not self._is_at_work
         self._finished.set()
-        if in_time:
-            shared.queue.close()
         log.info("the worker %s has stopped%s", shared.name, "" if in_time else " with orders in hand")
         return in_time
 

@@ -1,0 +1,240 @@
+"""The child of a worker: a real process that plans, fails, is killed, and never says a word out of turn."""
+
+import os
+import subprocess
+import sys
+import time
+from collections.abc import Callable, Iterator
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest
+from service.background.planning_child import ChildEndedError, ChildTooLongError, ChildUnwantedError, PlanningChild
+from service.parts import Parts
+from service.store.holds import FileKeeper
+from tests.faults import planner
+from tests.faults.ordering import CUTTER, MOVEMENT, plan_here, tune_called
+from tests.service.conftest import parts_of
+
+MEMORY_MIB = 300
+LONG_S = 30.0
+
+
+@pytest.fixture(scope="module")
+def shared_parts(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Parts]:
+    opened = parts_of(tmp_path_factory.mktemp("shop"))
+    yield opened
+    opened.store.close()
+
+
+@pytest.fixture(scope="module")
+def setup(shared_parts: Parts) -> ChildSetup:
+    return ChildSetup(
+        database_url=shared_parts.settings.database_url,
+        files_url=shared_parts.settings.files_url,
+        planner="tests.faults.planner",
+        memory_mib=MEMORY_MIB,
+        parent_pid=os.getpid(),
+    )
+
+
+@pytest.fixture
+def child(setup: ChildSetup) -> Iterator[PlanningChild]:
+    """One of the test's own, to be killed or grown."""
+    started = PlanningChild(setup)
+    yield started
+    started.end()
+
+
+@pytest.fixture(scope="module")
+def kept_child(setup: ChildSetup) -> Iterator[PlanningChild]:
+    """One that many tests use, for starting takes a second."""
+    started = PlanningChild(setup)
+    yield started
+    started.end()
+
+
+@pytest.fixture
+def request_for(shared_parts: Parts) -> Callable[[bytes], PlanRequest]:
+    def made(tune: bytes) -> PlanRequest:
+        digests = FileKeeper(shared_parts.store, shared_parts.files).keep([tune, MOVEMENT, CUTTER, b"{}"])
+        names = ("tune", "movement", "cutter", "settings")
+        return PlanRequest(order_id="order_1", not_good=None, **dict(zip(names, digests, strict=True)))
+
+    return made
+
+
+Requests = Callable[[bytes], PlanRequest]
+
+
+def plan(child: PlanningChild, request: PlanRequest, within_s: float = LONG_S) -> ChildAnswer:
+    return child.plan(request, within_s, lambda: True)
+
+
+def is_alive(pid: int) -> bool:
+    try:
+        state = Path(f"/proc/{pid}/stat").read_text().rpartition(")")[2].split()[0]
+    except FileNotFoundError:
+        return False
+    return state != "Z"
+
+
+def wait_until(true: Callable[[], bool], within_s: float = 10.0) -> bool:
+    last_s = time.monotonic() + within_s
+    while not true():
+        if time.monotonic() > last_s:
+            return False
+        time.sleep(0.02)
+    return True
+
+
+def test_a_child_gives_the_plan_that_this_process_would_make(
+    kept_child: PlanningChild, request_for: Requests, tmp_path: Path
+) -> None:
+    tune = tune_called("Harvest")
+
+    answer = plan(kept_child, request_for(tune))
+
+    assert answer.kind is Kind.PLANNED
+    assert answer.planned == plan_here(tune, planner, tmp_path)
+
+
+def test_one_child_serves_many_orders(kept_child: PlanningChild, request_for: Requests) -> None:
+    answers = [plan(kept_child, request_for(tune_called(f"Tune {number}"))) for number in range(20)]
+
+    assert {answer.kind for answer in answers} == {Kind.PLANNED}
+    assert len({answer.planned.told["discs"][0]["fingerprint"] for answer in answers if answer.planned}) == 20
+
+
+def test_what_libraries_print_is_no_answer(
+    capfd: pytest.CaptureFixture[str], setup: ChildSetup, request_for: Requests
+) -> None:
+    child = PlanningChild(setup)  # here, so that it writes where this test reads
+    answer = plan(child, request_for(tune_called("do:print;")))
+    child.end()
+
+    assert answer.kind is Kind.PLANNED
+    printed = capfd.readouterr()
+    assert printed.out == ""
+    assert "a library says hello" in printed.err
+    assert "and so does one in C" in printed.err
+
+
+def test_a_plan_that_fills_memory_is_refused_and_the_child_lives_on(
+    kept_child: PlanningChild, request_for: Requests
+) -> None:
+    answer = plan(kept_child, request_for(tune_called("do:fill;")))
+
+    assert answer.kind is Kind.REFUSED
+    assert answer.reason == (
+        "planning needs more than 300 MiB of memory; shorten the tune or split it over discs, "
+        "or ask the shop to raise DISCWRIGHT_PLAN_MEMORY_MIB"
+    )
+    assert plan(kept_child, request_for(tune_called("Harvest"))).kind is Kind.PLANNED
+
+
+def test_a_child_that_keeps_memory_is_seen_to_have_grown(child: PlanningChild, request_for: Requests) -> None:
+    plan(child, request_for(tune_called(f"do:grow {MEMORY_MIB // 2 - 30};")))
+    before = child.has_grown
+    plan(child, request_for(tune_called("do:grow 60;")))
+
+    assert (before, child.has_grown) == (False, True)
+
+
+def test_each_plan_may_take_as_much_memory_as_the_first(child: PlanningChild, request_for: Requests) -> None:
+    kinds = [plan(child, request_for(tune_called(f"do:grow {200 + number};"))).kind for number in range(3)]
+
+    assert kinds == [Kind.PLANNED] * 3  # 600 MiB are kept in the end, though one plan may take 300
+
+
+def test_a_child_that_ends_is_told_by_its_code(child: PlanningChild, request_for: Requests) -> None:
+    with pytest.raises(ChildEndedError, match=r"^its process ended with code 3$"):
+        plan(child, request_for(tune_called("do:exit 3;")))
+
+
+def test_a_child_that_is_killed_is_told_by_its_signal(child: PlanningChild, request_for: Requests) -> None:
+    with pytest.raises(ChildEndedError, match=r"^its process was ended by SIGSEGV$"):
+        plan(child, request_for(tune_called("do:segfault;")))
+
+
+def test_a_plan_that_takes_too_long_is_killed_in_time(child: PlanningChild, request_for: Requests) -> None:
+    begun_s = time.monotonic()
+
+    with pytest.raises(ChildTooLongError):
+        plan(child, request_for(tune_called("do:spin;")), within_s=1.0)
+
+    assert 1.0 <= time.monotonic() - begun_s < 3.0
+    assert not is_alive(child.pid)
+
+
+def test_a_plan_that_nobody_wants_any_more_is_killed(child: PlanningChild, request_for: Requests) -> None:
+    with pytest.raises(ChildUnwantedError):
+        child.plan(request_for(tune_called("do:spin;")), LONG_S, lambda: False)
+
+    assert not is_alive(child.pid)
+
+
+def test_a_fault_of_the_program_is_told_without_its_trace(kept_child: PlanningChild, request_for: Requests) -> None:
+    answer = plan(kept_child, request_for(tune_called("do:divide;")))
+
+    assert answer.kind is Kind.REFUSED
+    assert answer.reason == (
+        "planning met a fault of the program itself (ZeroDivisionError), logged under this order's id; "
+        "tell the shop, and order again when it is mended"
+    )
+    assert "ZeroDivisionError: of the test" in answer.trace
+
+
+def test_a_tune_that_cannot_be_read_is_refused_with_the_reason(
+    kept_child: PlanningChild, request_for: Requests
+) -> None:
+    answer = plan(kept_child, request_for(b"no tune"))
+
+    assert answer.kind is Kind.REFUSED
+    assert answer.reason.startswith("tune, byte 0: found")
+
+
+def test_an_input_that_was_lost_is_refused_with_what_to_do(kept_child: PlanningChild, request_for: Requests) -> None:
+    lost = "0" * 64
+
+    answer = plan(kept_child, replace(request_for(tune_called("Harvest")), tune=lost))
+
+    assert answer.kind is Kind.REFUSED
+    assert answer.reason == f"the file {lost} is not in the store of files; restore it from a backup"
+
+
+def test_a_planner_that_is_not_there_never_gets_warm(setup: ChildSetup) -> None:
+    with pytest.raises(ChildEndedError, match=r"^its process ended with code 1$"):
+        PlanningChild(replace(setup, planner="tests.faults.no_planner"))
+
+
+def test_a_child_dies_with_its_worker_even_while_it_computes(setup: ChildSetup, request_for: Requests) -> None:
+    request = request_for(tune_called("do:spin;"))
+    parent = subprocess.Popen(
+        [sys.executable, "-c", _PARENT, repr(setup), repr(request)], stdout=subprocess.PIPE, text=True
+    )
+    assert parent.stdout is not None
+    pid = int(parent.stdout.readline())
+    time.sleep(0.5)  # the order is on its way, or being planned
+    lived = is_alive(pid)
+
+    parent.kill()
+    parent.wait()
+    parent.stdout.close()
+
+    assert lived
+    assert wait_until(lambda: not is_alive(pid), within_s=2.0)
+
+
+_PARENT = """
+import os, sys
+from dataclasses import replace
+from service.background.messages import ChildSetup, PlanRequest
+from service.background.planning_child import PlanningChild
+child = PlanningChild(replace(eval(sys.argv[1]), parent_pid=os.getpid()))
+sys.stdout.write(f"{child.pid}\\n")
+sys.stdout.flush()
+child.plan(eval(sys.argv[2]), 60.0, lambda: True)
+"""

@@ -1,0 +1,285 @@
+"""A worker in this process, with real children: orders are planned, fail, are thrown away or handed back."""
+
+import threading
+import time
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+from sqlalchemy import update
+
+from service.background.chores import Chore
+from service.background.queue import Queue
+from service.background.worker import Worker
+from service.orders import taking
+from service.orders.states import State
+from service.parts import Parts
+from service.store.tables import Order
+from tests.faults import planner
+from tests.faults.ordering import assert_planned_once, look, place, plan_here, tune_called
+from tests.service.shop import open_shop
+
+PLANNER = "tests.faults.planner"
+WITHIN_S = 40.0
+
+
+@contextmanager
+def at_work(parts: Parts, **changes: int) -> Iterator[Worker]:
+    worker = Worker(with_work(parts, **changes), slots=1, planner=PLANNER)
+    worker.start()
+    try:
+        yield worker
+    finally:
+        worker.stop()
+
+
+def with_work(parts: Parts, **changes: int) -> Parts:
+    usual = replace(parts.settings.work, sweep_s=1, stop_within_s=4)
+    work = replace(usual, **changes)  # type: ignore[arg-type]
+    return replace(parts, settings=replace(parts.settings, work=work))
+
+
+def send(parts: Parts, order_id: str) -> None:
+    queue = Queue(parts.settings.queue_url)
+    assert queue.send(order_id)
+    queue.close()
+
+
+def wait_for(true: Callable[[], bool], within_s: float = WITHIN_S) -> None:
+    last_s = time.monotonic() + within_s
+    while not true():
+        assert time.monotonic() < last_s, "waited in vain"
+        time.sleep(0.02)
+
+
+def wait_for_state(parts: Parts, order_id: str, *wanted: State) -> None:
+    wait_for(lambda: look(parts, order_id).state in wanted)
+
+
+@pytest.fixture
+def shop(any_parts: Parts) -> Parts:
+    open_shop(any_parts)
+    return any_parts
+
+
+@pytest.fixture
+def small_shop(parts: Parts) -> Parts:
+    open_shop(parts)
+    return parts
+
+
+def test_an_order_is_planned_once_though_its_message_comes_twice(shop: Parts, tmp_path: Path) -> None:
+    tune = tune_called("Harvest")
+    order_id = place(shop, tune)
+    send(shop, order_id)
+    send(shop, order_id)
+    last_id = place(shop, tune_called("Sowing"))
+    send(shop, last_id)
+
+    with at_work(shop):
+        wait_for_state(shop, last_id, State.READY)
+
+    assert_planned_once(shop, order_id, plan_here(tune, planner, tmp_path))
+    assert look(shop, order_id).attempt == 1
+
+
+def test_an_order_whose_message_is_lost_is_found_by_the_sweep(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
+    order_ids = [place(shop, tune_called(f"Tune {number}")) for number in range(20)]  # more than are offered at a time
+
+    with at_work(shop):
+        for order_id in order_ids:
+            wait_for_state(shop, order_id, State.READY)
+
+    assert {look(shop, order_id).attempt for order_id in order_ids} == {1}
+
+
+def test_orders_are_planned_while_the_queue_is_away(small_shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
+    (small_shop.settings.places.data_directory / "queue.sqlite").mkdir()
+    order_id = place(small_shop, tune_called("Harvest"))
+
+    with at_work(small_shop):
+        wait_for_state(small_shop, order_id, State.READY)
+
+
+def test_an_order_whose_worker_has_gone_is_taken_over(shop: Parts) -> None:
+    order_id = place(shop, tune_called("Harvest"))
+    gone = taking.take(shop.store, order_id, worker="gone", lease_s=0.5, most_attempts=3)
+
+    with at_work(shop):
+        wait_for_state(shop, order_id, State.READY)
+
+    assert gone is not None
+    assert (look(shop, order_id).attempt, look(shop, order_id).events.count("order.planned")) == (2, 1)
+
+
+def test_a_lease_is_renewed_for_as_long_as_planning_takes(shop: Parts) -> None:
+    order_id = place(shop, tune_called("do:sleep 5;"))
+    send(shop, order_id)
+
+    with at_work(shop, lease_s=2), at_work(shop, lease_s=2):
+        wait_for_state(shop, order_id, State.READY)
+
+    assert look(shop, order_id).attempt == 1
+
+
+@pytest.mark.parametrize(
+    ("deed", "reason"),
+    [
+        (
+            "spin",
+            "planning took longer than 2 s; shorten the tune or split it over discs, "
+            "or ask the shop to raise DISCWRIGHT_PLAN_WITHIN_S",
+        ),
+        (
+            "fill",
+            "planning needs more than 300 MiB of memory; shorten the tune or split it over discs, "
+            "or ask the shop to raise DISCWRIGHT_PLAN_MEMORY_MIB",
+        ),
+        (
+            "exit 9",
+            "planning ended 2 times without a plan (its process ended with code 9); "
+            "simplify the tune or the settings, and order again",
+        ),
+        (
+            "divide",
+            "planning met a fault of the program itself (ZeroDivisionError), logged under this order's id; "
+            "tell the shop, and order again when it is mended",
+        ),
+    ],
+)
+def test_an_order_that_cannot_be_planned_fails_with_the_reason_and_the_next_is_planned(
+    small_shop: Parts, deed: str, reason: str
+) -> None:
+    bad_id, good_id = place(small_shop, tune_called(f"do:{deed};")), place(small_shop, tune_called("Harvest"))
+    for order_id in (bad_id, good_id):
+        send(small_shop, order_id)
+
+    with at_work(small_shop, plan_within_s=2, plan_memory_mib=300, most_attempts=2):
+        wait_for_state(small_shop, good_id, State.READY)
+
+    bad = look(small_shop, bad_id)
+    assert (bad.state, bad.reason) == ("failed", reason)
+    assert bad.events == ["order.received", "order.failed"]
+    assert bad.plans == []
+
+
+def test_an_order_that_is_not_held_any_more_is_planned_no_further(shop: Parts) -> None:
+    order_id = place(shop, tune_called("do:spin;"))
+    next_id = place(shop, tune_called("Harvest"))
+    send(shop, order_id)
+    send(shop, next_id)
+
+    with at_work(shop, lease_s=2):
+        wait_for_state(shop, order_id, State.PLANNING)
+        with shop.store.writing() as session:
+            session.execute(update(Order).where(Order.id == order_id).values(state=State.CANCELLED.value))
+        wait_for_state(shop, next_id, State.READY)
+
+    assert look(shop, order_id).state == State.CANCELLED
+
+
+def test_a_worker_that_stops_finishes_what_is_nearly_done(shop: Parts) -> None:
+    order_id = place(shop, tune_called("do:sleep 1;"))
+    send(shop, order_id)
+
+    with at_work(shop) as worker:
+        wait_for_state(shop, order_id, State.PLANNING)
+        in_time = worker.stop()
+
+    assert in_time
+    assert look(shop, order_id).state == State.READY
+
+
+def test_a_worker_that_stops_hands_back_what_takes_too_long_and_tells_the_queue(shop: Parts) -> None:
+    order_id = place(shop, tune_called("do:spin;"))
+    send(shop, order_id)
+    begun_s = 0.0
+
+    with at_work(shop, stop_within_s=3) as worker:
+        wait_for_state(shop, order_id, State.PLANNING)
+        begun_s = time.monotonic()
+        in_time = worker.stop()
+        took_s = time.monotonic() - begun_s
+
+    seen = look(shop, order_id)
+    assert in_time
+    assert took_s < 3.0
+    assert (seen.state, seen.killed) == ("received", 0)
+    queue = Queue(shop.settings.queue_url)
+    assert queue.receive(0) == order_id
+    queue.close()
+
+
+def test_a_worker_that_is_hurried_hands_back_at_once(small_shop: Parts) -> None:
+    order_id = place(small_shop, tune_called("do:spin;"))
+    send(small_shop, order_id)
+    hurry = threading.Event()
+    hurry.set()
+
+    with at_work(small_shop, stop_within_s=60) as worker:
+        wait_for_state(small_shop, order_id, State.PLANNING)
+        begun_s = time.monotonic()
+        worker.stop(hurry=hurry)
+        took_s = time.monotonic() - begun_s
+
+    assert took_s < 5.0
+    assert look(small_shop, order_id).state == "received"
+
+
+def test_a_worker_whose_children_do_not_start_takes_no_order(small_shop: Parts) -> None:
+    order_id = place(small_shop, tune_called("Harvest"))
+    send(small_shop, order_id)
+    worker = Worker(with_work(small_shop), slots=1, planner="tests.faults.no_planner")
+
+    worker.start()
+    time.sleep(4.0)  # a child takes a second to start, and to fail
+    worker.stop()
+
+    assert (look(small_shop, order_id).state, look(small_shop, order_id).attempt) == ("received", 0)
+
+
+def test_a_store_of_files_that_is_away_costs_an_order_no_attempt(
+    small_shop: Parts, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 2)
+    order_id = place(small_shop, tune_called("Harvest"))
+    folder = small_shop.settings.places.data_directory / "files"
+    shards = [shard for shard in folder.iterdir() if shard.is_dir()]
+    for shard in shards:
+        shard.rename(folder / f"away-{shard.name}")
+        shard.write_text("in the way")  # opening a file below a file fails, but not as one that is lost
+    send(small_shop, order_id)
+
+    with at_work(small_shop):
+        wait_for(lambda: look(small_shop, order_id).attempt > 0)
+        wait_for_state(small_shop, order_id, State.RECEIVED)
+        for shard in shards:
+            shard.unlink()
+            (folder / f"away-{shard.name}").rename(shard)
+        wait_for_state(small_shop, order_id, State.READY)
+
+    assert look(small_shop, order_id).killed == 0
+
+
+def test_a_worker_does_its_chores_though_one_goes_wrong(small_shop: Parts, caplog: pytest.LogCaptureFixture) -> None:
+    done: list[str] = []
+
+    def go_wrong() -> None:
+        raise ZeroDivisionError("of the test")
+
+    chores = [
+        Chore(name="first", every_s=0.05, work=go_wrong),
+        Chore(name="second", every_s=0.05, work=lambda: done.append("second")),
+    ]
+    worker = Worker(with_work(small_shop), slots=1, planner=PLANNER, chores=chores)
+
+    worker.start()
+    wait_for(lambda: len(done) > 2)
+    worker.stop()
+
+    told = [record.getMessage() for record in caplog.records if record.levelname == "ERROR"]
+    assert told.count("the chore 'first' went wrong; it is done again in 0.05 s") > 1
