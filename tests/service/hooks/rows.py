@@ -17,7 +17,7 @@ from service.settings import HookSettings
 from service.store.ids import new_id
 from service.store.tables import Delivery, Event, Order, Owner
 
-NOW = datetime(2026, 12, 2, 10, 0, 0, 250_000, tzinfo=UTC)
+NOW = datetime(2025, 12, 2, 10, 0, 0, 250_000, tzinfo=UTC)
 DIGEST = "0" * 64
 
 

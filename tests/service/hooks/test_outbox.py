@@ -43,7 +43,7 @@ def test_a_message_holds_type_time_and_what_happened(any_parts: Parts) -> None:
     delivery = only_delivery(any_parts)
     assert json.loads(delivery.body) == {
         "type": "order.received",
-        "timestamp": "2026-12-02T10:00:00.250000Z",
+        "timestamp": "2025-12-02T10:00:00.250000Z",
         "data": {
             "seq": event.seq,
             "order_id": order.id,

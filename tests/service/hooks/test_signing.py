@@ -17,7 +17,7 @@ from service.hooks.signing import (
     verify,
 )
 
-NOW = datetime(2026, 12, 2, 10, 0, 0, 250_000, tzinfo=UTC)
+NOW = datetime(2025, 12, 2, 10, 0, 0, 250_000, tzinfo=UTC)
 DAY = timedelta(days=1)
 # The vector that the reference libraries of Standard Webhooks test with.
 VECTOR_SECRET = "whsec_MfKQ9r8GKYqrTwjUPD8ILPZIo2LaLaSw"

@@ -1,0 +1,160 @@
+import threading
+import time
+from collections import Counter
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import replace
+
+from service.hooks.deliveries import count_deliveries
+from service.hooks.telling import MOST_PER_HOOK, tell_hooks
+from service.parts import Parts
+from service.settings import WorkSettings
+from tests.service.hooks.receivers import Got, Receiver, listening
+from tests.service.hooks.rows import add_owner, make_hook, place, reaching_loopback
+
+
+@contextmanager
+def telling(parts: Parts, loops: int = 1) -> Iterator[None]:
+    """Loops that tell hooks, as workers run them."""
+    stop = threading.Event()
+    threads = [threading.Thread(target=tell_hooks, args=(parts, stop)) for _ in range(loops)]
+    for thread in threads:
+        thread.start()
+    try:
+        yield
+    finally:
+        stop.set()
+        for thread in threads:
+            thread.join(30)
+    assert not any(thread.is_alive() for thread in threads)
+
+
+def becomes_true(said: Callable[[], bool], within_s: float = 20) -> bool:
+    until = time.monotonic() + within_s
+    while time.monotonic() < until:
+        if said():
+            return True
+        time.sleep(0.02)
+    return False
+
+
+def counts(parts: Parts) -> dict[str, int]:
+    with parts.store.reading() as session:
+        return count_deliveries(session)
+
+
+def test_every_message_goes_out_once_though_two_loops_look_for_them(any_parts: Parts) -> None:
+    parts = reaching_loopback(any_parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    with listening(Receiver()) as receiver:
+        make_hook(parts, shop, receiver.url)
+        with telling(parts, loops=2):
+            for _ in range(30):
+                place(parts, shop)
+            assert becomes_true(lambda: counts(parts)["delivered"] == 30)
+
+    assert len({got.headers["webhook-id"] for got in receiver.got}) == 30 == len(receiver.got)
+
+
+def test_a_message_goes_out_within_about_a_second(parts: Parts) -> None:
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    with listening(Receiver()) as receiver:
+        make_hook(parts, shop, receiver.url)
+        with telling(parts):
+            time.sleep(1.2)
+            started = time.monotonic()
+            place(parts, shop)
+            assert becomes_true(lambda: len(receiver.got) == 1)
+            assert time.monotonic() - started < 4  # a second, and what a busy machine takes
+
+
+def test_hooks_that_hang_hold_up_no_others(parts: Parts) -> None:
+    parts = reaching_loopback(parts, timeout_s=8)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    never = threading.Event()
+
+    def hang(_got: Got) -> tuple[int, dict[str, str]]:
+        never.wait(30)
+        return 200, {}
+
+    with listening(Receiver(answer=hang)) as hanging, listening(Receiver()) as receiver:
+        for number in range(5):
+            make_hook(parts, shop, f"{hanging.url}&number={number}")
+        for _ in range(20):
+            place(parts, shop)  # a hundred messages to those that hang
+        with telling(parts):
+            assert becomes_true(lambda: len(hanging.got) >= 5 * MOST_PER_HOOK)
+            make_hook(parts, shop, receiver.url)
+            started = time.monotonic()
+            for _ in range(10):
+                place(parts, shop)
+            assert becomes_true(lambda: len(receiver.got) == 10)
+            assert time.monotonic() - started < 6
+            at_a_time = Counter(got.path for got in hanging.got)
+            never.set()
+
+    assert set(at_a_time.values()) == {MOST_PER_HOOK}
+
+
+def test_a_hook_gets_a_few_messages_at_a_time(parts: Parts) -> None:
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    lock, now, most = threading.Lock(), [0], [0]
+
+    def count(_got: Got) -> tuple[int, dict[str, str]]:
+        with lock:
+            now[0] += 1
+            most[0] = max(most[0], now[0])
+        time.sleep(0.1)
+        with lock:
+            now[0] -= 1
+        return 200, {}
+
+    with listening(Receiver(answer=count)) as receiver:
+        make_hook(parts, shop, receiver.url)
+        for _ in range(16):
+            place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: counts(parts)["delivered"] == 16)
+
+    assert 1 < most[0] <= MOST_PER_HOOK
+
+
+def test_told_to_stop_it_ends_in_time_though_a_hook_hangs_and_the_message_goes_out_later(parts: Parts) -> None:
+    parts = reaching_loopback(parts, timeout_s=30)
+    parts = replace(parts, settings=replace(parts.settings, work=WorkSettings(stop_within_s=2)))
+    shop = add_owner(parts, "the shop", is_shop=True)
+    never = threading.Event()
+
+    def hang(_got: Got) -> tuple[int, dict[str, str]]:
+        never.wait(30)
+        return 200, {}
+
+    with listening(Receiver(answer=hang)) as receiver:
+        make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: len(receiver.got) == 1)
+            started = time.monotonic()
+        assert time.monotonic() - started < 5
+        assert counts(parts)["waiting"] == 1
+        never.set()
+        assert becomes_true(lambda: counts(parts)["delivered"] == 1)
+
+
+def test_what_is_being_sent_is_seen_to_its_end(parts: Parts) -> None:
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+
+    def think(_got: Got) -> tuple[int, dict[str, str]]:
+        time.sleep(1)
+        return 200, {}
+
+    with listening(Receiver(answer=think)) as receiver:
+        make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: len(receiver.got) == 1)
+
+    assert counts(parts)["delivered"] == 1
