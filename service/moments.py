@@ -10,3 +10,8 @@ def moment_text(at: datetime) -> str:
         at: With a time zone.
     """
     return at.astimezone(UTC).strftime("%Y-%m-%dT%H:%M:%S.%fZ")
+
+
+def utc_now() -> datetime:
+    """The moment, by this machine's clock."""
+    return datetime.now(UTC)

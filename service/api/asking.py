@@ -7,7 +7,7 @@ browser that is signed in as one; the cookie alone is never enough to write, see
 import logging
 from collections.abc import Callable
 from dataclasses import dataclass
-from datetime import UTC, datetime
+from datetime import datetime
 from enum import StrEnum
 from functools import wraps
 from typing import Any, TypeVar
@@ -21,6 +21,7 @@ from service.access.rates import Count, Kind, Rates, of_address
 from service.access.scopes import Scope
 from service.api.own_pages import SAFE_METHODS, cookie_of, is_of_this_machine, why_not_vouched
 from service.api.problems import ProblemError
+from service.moments import utc_now
 from service.parts import Parts
 
 log = logging.getLogger("discwright")
@@ -101,16 +102,16 @@ def browser_or_none() -> Browser | None:
     return browser
 
 
-def guard(app: Flask, parts: Parts, rates: Rates, clock: Callable[[], datetime] | None = None) -> None:
+def guard(app: Flask, parts: Parts, rates: Rates, clock: Callable[[], datetime] = utc_now) -> None:
     """Let every route of an app be asked only by whom it declares.
 
     Args:
         app: The app; routes may be added before and after.
         parts: Read for keys and settings.
         rates: Counts requests.
-        clock: The moment, in UTC; None for the system's.
+        clock: The moment, in UTC.
     """
-    gate = _Gate(parts, rates, clock or (lambda: datetime.now(UTC)))
+    gate = _Gate(parts, rates, clock)
 
     @app.before_request
     def let_in() -> None:

@@ -16,12 +16,13 @@ from service.api.asking import browser_or_none, needs, needs_any_key
 from service.api.models.keys import KeyBody, KeysQuery
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments, read_body
+from service.moments import utc_now
 from service.parts import Parts
 
 MOST_BODY_BYTES = 10_000  # bytes; the longest titles in escapes of JSON, and every scope, take 5,000
 
 
-def key_routes(parts: Parts, clock: Callable[[], datetime]) -> Blueprint:
+def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blueprint:
     """The routes of keys.
 
     Args:

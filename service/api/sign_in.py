@@ -11,12 +11,13 @@ from service.access.keys import find_key
 from service.api.asking import needs_any_key, open_but_counted
 from service.api.own_pages import FORM_MEDIA_TYPE, clear_cookie, cookie_of, from_elsewhere, set_cookie
 from service.api.problems import ProblemError
+from service.moments import utc_now
 from service.parts import Parts
 
 FIRST_PAGE = "/"
 
 
-def sign_in_routes(parts: Parts, clock: Callable[[], datetime]) -> Blueprint:
+def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blueprint:
     """The routes by which browsers are signed in and out.
 
     Args:

@@ -4,7 +4,7 @@ import argparse
 import os
 from collections.abc import Iterator
 from contextlib import contextmanager
-from datetime import UTC, datetime, timedelta
+from datetime import datetime, timedelta
 
 from service.access.first_start import FirstKey
 from service.access.keys import KeyAsked, KeyTold, list_keys, make_key, revoke_key
@@ -14,6 +14,7 @@ from service.access.telling import key_told
 from service.commands.arguments import OneLineParser, Tools, add_json
 from service.commands.errors import GOOD, CommandError
 from service.commands.output import aligned, say, say_json
+from service.moments import utc_now
 from service.parts import open_parts
 from service.settings import SettingsError, settings_from
 from service.store.faults import StoreError
@@ -69,7 +70,7 @@ def run(asked: argparse.Namespace, _: Tools) -> int:
         CommandError: There is no such key or owner, or the database cannot be used.
     """
     with _opened() as store:
-        code: int = asked.act(asked, store, datetime.now(UTC))
+        code: int = asked.act(asked, store, utc_now())
     return code
 
 
