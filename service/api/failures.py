@@ -10,8 +10,11 @@ from werkzeug.exceptions import HTTPException, MethodNotAllowed, NotFound, Reque
 from werkzeug.wrappers import Response as AnyResponse
 
 from layout.errors import DocumentError, LayoutError, MidiReadError, NotShippedError, RulingError
+from service.api.order_failures import problem_of_order, problem_of_store
 from service.api.problems import ProblemError, problem_response
 from service.limits import Limits
+from service.orders.faults import OrderFault
+from service.store.faults import StoreError
 from service.wording import shortened, told_in_short
 
 log = logging.getLogger("discwright")
@@ -38,6 +41,14 @@ def answer_failures(app: Flask, limits: Limits) -> None:
     @app.errorhandler(LayoutError)
     def _(error: LayoutError) -> Response:
         return tell(problem_of(error, limits))
+
+    @app.errorhandler(OrderFault)
+    def _(fault: OrderFault) -> Response:
+        return tell(problem_of_order(fault, limits))
+
+    @app.errorhandler(StoreError)
+    def _(fault: StoreError) -> Response:
+        return tell(problem_of_store(fault))
 
     @app.errorhandler(HTTPException)
     def _(refusal: HTTPException) -> Response | AnyResponse:

@@ -55,17 +55,17 @@ def _parts(request: Request, limits: Limits) -> dict[str, bytes]:
         raise _unsupported(f"the body is packed ({coding!r}); send it as it is", {"Accept-Encoding": "identity"})
     if request.mimetype == FORM_MEDIA_TYPE:
         return parts_of(
-            _body(request, limits.upload_bytes),
+            body_of(request, limits.upload_bytes),
             boundary=request.mimetype_params.get("boundary"),
             known=("tune", *DOCUMENT_PARTS),
             most_parts=limits.form_parts,
         )
     if request.mimetype in TUNE_MEDIA_TYPES or not request.mimetype:
-        return {"tune": _body(request, limits.upload_bytes)}
+        return {"tune": body_of(request, limits.upload_bytes)}
     raise _unsupported(f"{request.mimetype!r} is not taken; taken are {', '.join(MEDIA_TYPES)}", {})
 
 
-def _body(request: Request, most_bytes: int) -> bytes:
+def body_of(request: Request, most_bytes: int) -> bytes:
     """The whole body; the web library would cut off a chunked one at its limit and say nothing."""
     length = request.content_length
     if length is not None and length > most_bytes:

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
+from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from service.access.asker import Asker
@@ -16,7 +17,7 @@ from service.orders.placing import Also
 from service.orders.states import EventType, State
 from service.orders.views import OrderView, order_view
 from service.store.store import Store
-from service.store.tables import Order, Plan
+from service.store.tables import Order, Plan, PlanFile
 
 REPORTS = {
     "taken": EventType.TAKEN,
@@ -75,7 +76,7 @@ def release_order(store: Store, asker: Asker, seen: Seen, release: Release, also
                 f"a person must decide: {order.reason}; give despite_findings, a reason, or replan"
             )
         plan = _plan(session, order)
-        if not plan.good_to_cut:
+        if not _has_cutting_files(session, plan):
             columns = {"despite_findings": release.despite_findings, "despite_by": release.by, "reason": None}
             _change(session, order, State.RECEIVED, now, columns)
             return
@@ -219,6 +220,12 @@ def _decide(
 def _change(session: Session, order: Order, to: State, now: datetime, columns: Mapping[str, Any]) -> None:
     if not change(session, order, to, at=now, columns=columns):
         raise ChangedMeanwhileError("the order was changed at the same moment; read it again")
+
+
+def _has_cutting_files(session: Session, plan: Plan) -> bool:
+    """Whether they were made: not where an error-level finding stands and nobody had said why they are wanted."""
+    of_plan = (PlanFile.order_id == plan.order_id, PlanFile.revision == plan.revision)
+    return session.scalars(select(PlanFile).where(*of_plan, PlanFile.is_for_cutting).limit(1)).first() is not None
 
 
 def _plan(session: Session, order: Order) -> Plan:

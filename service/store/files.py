@@ -84,17 +84,11 @@ class FileStore:
             FileLostError: It is not there.
         """
         try:
-            with _told("the file could not be read"), self._files.open(self._path(digest), "rb") as file:
-                file.seek(start)
-                left = None if end is None else end - start
-                while left is None or left > 0:
-                    piece = file.read(CHUNK_BYTES if left is None else min(CHUNK_BYTES, left))
-                    if not piece:
-                        return
-                    left = None if left is None else left - len(piece)
-                    yield piece
+            with _told("the file could not be read"):
+                file = self._files.open(self._path(digest), "rb")
         except FileNotFoundError as fault:
             raise FileLostError(f"the file {digest} is not in the store of files; restore it from a backup") from fault
+        return _pieces(file, start, end)
 
     def has(self, digest: str) -> bool:
         """Whether the file is there."""
@@ -117,6 +111,18 @@ class FileStore:
 
     def _path(self, digest: str) -> str:
         return str(self._root / digest[:2] / digest)
+
+
+def _pieces(file: Any, start: int, end: int | None) -> Iterator[bytes]:
+    with file, _told("the file could not be read"):
+        file.seek(start)
+        left = None if end is None else end - start
+        while left is None or left > 0:
+            piece = file.read(CHUNK_BYTES if left is None else min(CHUNK_BYTES, left))
+            if not piece:
+                return
+            left = None if left is None else left - len(piece)
+            yield piece
 
 
 def _to_disk(file: Any) -> None:

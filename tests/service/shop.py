@@ -11,7 +11,8 @@ from layout.write.laid_out import LaidOut
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.orders import taking
-from service.orders.placing import AskedOrder, NamedDocument, nothing_more, place_order
+from service.orders.asked import AskedOrder, NamedDocument
+from service.orders.placing import nothing_more, place_order
 from service.orders.planned import OrderInputs, PlannedOrder
 from service.orders.planning import plan_order
 from service.orders.taking import Taken

@@ -11,6 +11,7 @@ from sqlalchemy.orm import Session
 from layout.errors import DocumentError, MidiReadError
 from service.access.asker import Asker
 from service.orders import taking
+from service.orders.asked import NamedDocument
 from service.orders.deciding import (
     Release,
     Seen,
@@ -28,7 +29,7 @@ from service.orders.faults import (
     StateForbidsError,
 )
 from service.orders.finding import Sought, events_after, events_of, find_order, list_orders
-from service.orders.placing import NamedDocument, nothing_more, place_order
+from service.orders.placing import nothing_more, place_order
 from service.orders.states import MAY_FOLLOW, State
 from service.orders.views import OrderView
 from service.parts import Parts

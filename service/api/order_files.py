@@ -1,0 +1,90 @@
+"""The files of an order's plans: previews before release, cutting files after it."""
+
+from flask import Blueprint, Request, Response, request
+
+from service.access.asker import Asker
+from service.access.scopes import Scope
+from service.api.answers import ONLY_OWN_STYLES
+from service.api.asking import needs
+from service.api.order_answers import order_address
+from service.api.problems import ProblemError
+from service.api.serving import Served, served
+from service.orders.finding import find_order
+from service.orders.views import FileView, PlanView, plan_view
+from service.parts import Parts
+
+SUPERSEDED = "superseded"  # the parameter by which a file of a superseded plan is asked for all the same
+
+
+def order_file_routes(parts: Parts) -> Blueprint:
+    """The routes of files of orders."""
+    routes = Blueprint("order_files", __name__, url_prefix="/v1/orders/<order_id>/plans")
+
+    @routes.get("/<int:revision>/files/<int:disc>/<name>")
+    @needs(Scope.READ)
+    def give(asker: Asker, order_id: str, revision: int, disc: int, name: str) -> Response:
+        with parts.store.reading() as session:
+            order = find_order(session, asker, order_id)
+            plan = plan_view(session, order.id, revision)
+        file = file_of(plan, disc, name)
+        _check_given(plan, file, request)
+        response = file_response(parts, file, request)
+        if plan is not None and plan.superseded_at is not None:
+            response.headers["Link"] = f'<{order_address(order_id)}>; rel="latest-version"'  # RFC 5829
+        return response
+
+    return routes
+
+
+def file_of(plan: PlanView | None, disc: int, name: str) -> FileView:
+    """A file of a plan.
+
+    Raises:
+        ProblemError: There is none of that name.
+    """
+    files = () if plan is None else plan.files
+    for file in files:
+        if (file.disc, file.name) == (disc, name):
+            return file
+    known = [f"{file.disc}/{file.name}" for file in files]
+    raise ProblemError(
+        name="route-unknown",
+        detail=f"the plan has no file {disc}/{name[:60]}" + (f"; it has {', '.join(known)}" if known else ""),
+        more={"known_files": known},
+    )
+
+
+def file_response(parts: Parts, file: FileView, asked: Request) -> Response:
+    """A file, whole or a range of it, under the name it is saved by."""
+    is_picture = file.name.endswith(".svg")
+    response = served(
+        parts.files,
+        Served(
+            digest=file.sha256,
+            byte_count=file.byte_count,
+            media_type=file.media_type,
+            saved_as=file.saved_as,
+            how="inline" if is_picture else "attachment",
+            max_age_s=parts.settings.limits.file_max_age_s,
+        ),
+        asked,
+    )
+    if is_picture:
+        response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
+    return response
+
+
+def _check_given(plan: PlanView | None, file: FileView, asked: Request) -> None:
+    if plan is None or not file.is_for_cutting:
+        return
+    if plan.released_at is None:
+        raise ProblemError(
+            name="not-released",
+            detail=f"{file.name} is for cutting, and the plan is not released; previews may be had before",
+        )
+    if plan.superseded_at is not None and asked.args.get(SUPERSEDED) != "yes":
+        raise ProblemError(
+            name="plan-superseded",
+            detail=f"plan {plan.revision} is superseded and not to be cut any more; "
+            f"ask with {SUPERSEDED}=yes to see the file all the same",
+        )

@@ -1,0 +1,93 @@
+"""/v1/proofs: what a customer with a signed link sees of an order, and says about it."""
+
+from flask import Blueprint, Response, request
+
+from layout.documents.reading import check_document, read_json
+from service.api.answers import json_response
+from service.api.asking import open_but_counted
+from service.api.models.proofs import VerdictBody
+from service.api.order_files import file_of, file_response
+from service.api.posted import body_of
+from service.api.problems import ProblemError
+from service.orders.deciding import customer_says
+from service.orders.faults import OrderUnknownError
+from service.orders.proofs import Proof, ProofLinks, ProofRefusedError
+from service.orders.states import State
+from service.orders.views import OrderView, PlanView, order_view, plan_view
+from service.parts import Parts
+from service.store.tables import Order
+
+SHOWN = ("disc.svg", "report.json")  # what a customer may see of each disc
+
+
+def proof_routes(parts: Parts, links: ProofLinks) -> Blueprint:
+    """The routes of proofs."""
+    routes = Blueprint("proofs", __name__, url_prefix="/v1/proofs")
+
+    @routes.get("/<text>")
+    @open_but_counted
+    def show(text: str) -> Response:
+        proof = _proof(links, text)
+        order, plan = _shown(parts, proof)
+        return json_response(
+            {
+                "reference": order.reference,
+                "title": plan.told["title"],
+                "movement": {"id": order.movement_id, "revision": order.movement_revision},
+                "revision": plan.revision,
+                "waits_for_decision": _waits(order, proof),
+                "discs": [
+                    {
+                        "number": disc["number"],
+                        "of": disc["of"],
+                        "asked_count": disc["asked_count"],
+                        "kept_count": disc["kept_count"],
+                        "files": {name: f"/v1/proofs/{text}/files/{disc['number']}/{name}" for name in SHOWN},
+                    }
+                    for disc in plan.told["discs"]
+                ],
+            }
+        )
+
+    @routes.get("/<text>/files/<int:disc>/<name>")
+    @open_but_counted
+    def give(text: str, disc: int, name: str) -> Response:
+        _, plan = _shown(parts, _proof(links, text))
+        if name not in SHOWN:
+            raise ProblemError(name="route-unknown", detail=f"a proof shows {', '.join(SHOWN)} alone")
+        return file_response(parts, file_of(plan, disc, name), request)
+
+    @routes.post("/<text>/verdict")
+    @open_but_counted
+    def say(text: str) -> Response:
+        proof = _proof(links, text)
+        body = _read(VerdictBody, body_of(request, parts.settings.limits.document_bytes))
+        customer_says(parts.store, proof.order_id, proof.revision, body.verdict, by=body.by, note=body.note)
+        return json_response({"verdict": body.verdict, "revision": proof.revision})
+
+    return routes
+
+
+def _read(model: type[VerdictBody], text: bytes) -> VerdictBody:
+    value, _ = read_json(text or b"{}", document="verdict")
+    return check_document(model, value, document="verdict")
+
+
+def _proof(links: ProofLinks, text: str) -> Proof:
+    try:
+        return links.read(text)
+    except ProofRefusedError as refusal:
+        raise ProblemError(name="proof-refused", detail=str(refusal)) from refusal
+
+
+def _shown(parts: Parts, proof: Proof) -> tuple[OrderView, PlanView]:
+    with parts.store.reading() as session:
+        order = session.get(Order, proof.order_id)
+        plan = plan_view(session, proof.order_id, proof.revision)
+        if order is None or plan is None or order.erased_at is not None:
+            raise OrderUnknownError("what this link showed is deleted")
+        return order_view(session, order), plan
+
+
+def _waits(order: OrderView, proof: Proof) -> bool:
+    return order.state in (State.READY, State.ATTENTION) and order.plan_revision == proof.revision

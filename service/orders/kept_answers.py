@@ -1,0 +1,131 @@
+"""Answers kept for an Idempotency-Key, so that a request sent twice does its work once.
+
+A request first claims its key, then works, then writes its answer in the very transaction that did the work:
+there is never one without the other. A claim whose request never came to its end may be taken over.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from datetime import timedelta
+from typing import Any
+
+from sqlalchemy import delete, update
+from sqlalchemy.orm import Session
+
+from service.store.ids import new_id
+from service.store.store import Store
+from service.store.tables import KeptAnswer
+
+CLAIMED_S = 150  # s; longer than the web process gives a request, so that a claim run out is of a request that ended
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class AskedOnce:
+    """A request that asks to be done once.
+
+    Attributes:
+        owner_id: Who asks; keys of owners are apart.
+        operation: Method and path.
+        key: Its Idempotency-Key.
+        digest: Of what it brings, by the digests of its parts.
+    """
+
+    owner_id: str
+    operation: str
+    key: str
+    digest: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Claim:
+    """The right to do a request's work."""
+
+    asked: AskedOnce
+    token: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Given:
+    """An answer as it was given."""
+
+    status: int
+    headers: Mapping[str, str]
+    body: bytes
+
+
+class StillRunningError(Exception):
+    """The same request is being answered at this moment."""
+
+
+class AnotherRequestError(Exception):
+    """The key was used for a request that brought something else."""
+
+
+def claim_or_answer(store: Store, asked: AskedOnce, *, kept_days: int) -> Claim | Given:
+    """The right to do the work, or the answer that was given when it was done.
+
+    Raises:
+        StillRunningError: The same request is being answered.
+        AnotherRequestError: The key was used for something else.
+        StoreBusyError: The database does not answer.
+    """
+    with store.writing() as session:
+        now = store.now(session)
+        kept = session.get(KeptAnswer, (asked.owner_id, asked.operation, asked.key), with_for_update=True)
+        if kept is not None and kept.expires_at <= now:
+            session.delete(kept)
+            session.flush()
+            kept = None
+        if kept is not None and kept.digest != asked.digest:
+            raise AnotherRequestError
+        if kept is not None and kept.status is not None:
+            return Given(status=kept.status, headers=kept.headers or {}, body=kept.body or b"")
+        if kept is not None and kept.lease_until > now:
+            raise StillRunningError
+        claim = Claim(asked=asked, token=new_id("claim", now))
+        row: dict[str, Any] = {
+            "digest": asked.digest,
+            "token": claim.token,
+            "started_at": now,
+            "lease_until": now + timedelta(seconds=CLAIMED_S),
+            "expires_at": now + timedelta(days=kept_days),
+        }
+        if kept is None:
+            session.add(KeptAnswer(owner_id=asked.owner_id, operation=asked.operation, key=asked.key, **row))
+        else:
+            session.execute(update(KeptAnswer).where(*_row_of(asked)).values(row))
+        return claim
+
+
+def keep_answer(session: Session, claim: Claim, given: Given) -> None:
+    """Write the answer into the transaction that did the work.
+
+    Raises:
+        StillRunningError: Another took the claim over; the transaction must not be committed.
+    """
+    values = {"status": given.status, "headers": dict(given.headers), "body": given.body}
+    mine = update(KeptAnswer).where(*_row_of(claim.asked), KeptAnswer.token == claim.token).values(values)
+    if session.execute(mine).rowcount == 0:  # type: ignore[attr-defined]
+        raise StillRunningError
+
+
+def give_up(store: Store, claim: Claim) -> None:
+    """Let a claim go whose work was refused or failed: nothing was done, and the key may be used again."""
+    with store.writing() as session:
+        mine = (*_row_of(claim.asked), KeptAnswer.token == claim.token, KeptAnswer.status.is_(None))
+        session.execute(delete(KeptAnswer).where(*mine))
+
+
+def forget_answers(store: Store) -> int:
+    """Remove answers that have been kept long enough; gives how many."""
+    with store.writing() as session:
+        old = delete(KeptAnswer).where(KeptAnswer.expires_at <= store.now(session))
+        return int(session.execute(old).rowcount)  # type: ignore[attr-defined]
+
+
+def _row_of(asked: AskedOnce) -> tuple[Any, ...]:
+    return (
+        KeptAnswer.owner_id == asked.owner_id,
+        KeptAnswer.operation == asked.operation,
+        KeptAnswer.key == asked.key,
+    )
