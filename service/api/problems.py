@@ -6,14 +6,15 @@ from typing import Any
 
 from flask import Response
 
-from service.api import order_problem_kinds, problem_kinds
+from service.api import hook_problem_kinds, order_problem_kinds, problem_kinds
 from service.api.answers import json_bytes
 from service.api.problem_kinds import ProblemKind
 
 PROBLEM_MEDIA_TYPE = "application/problem+json"
 
 
-PROBLEMS: Mapping[str, ProblemKind] = {kind.name: kind for kind in (*problem_kinds.KINDS, *order_problem_kinds.KINDS)}
+_ALL = (*problem_kinds.KINDS, *order_problem_kinds.KINDS, *hook_problem_kinds.KINDS)
+PROBLEMS: Mapping[str, ProblemKind] = {kind.name: kind for kind in _ALL}
 
 
 @dataclass(kw_only=True, eq=False)  # not frozen: Python sets an exception's traceback

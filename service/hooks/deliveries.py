@@ -10,7 +10,7 @@ from sqlalchemy import Select, delete, func, or_, select, update
 from sqlalchemy.orm import Session
 
 from service.hooks.outbox import DELIVERED, FAILED, WAITING
-from service.store.tables import Delivery, Event, Hook
+from service.store.tables import Delivery, Hook
 
 MOST_LOOKED_AT = 200  # hooks with something due in one look; there are few more, and the next look follows at once
 
@@ -169,17 +169,6 @@ def forget_deliveries(session: Session, before: datetime) -> int:
         How many.
     """
     gone = delete(Delivery).where(Delivery.state.in_((DELIVERED, FAILED)), Delivery.finished_at < before)
-    return int(session.execute(gone).rowcount)  # type: ignore[attr-defined]
-
-
-def forget_deliveries_of_order(session: Session, order_id: str) -> int:
-    """Delete every message about an order, sent or not: they hold what is deleted with it.
-
-    Returns:
-        How many.
-    """
-    events = select(Event.seq).where(Event.order_id == order_id)
-    gone = delete(Delivery).where(Delivery.event_seq.in_(events)).execution_options(synchronize_session=False)
     return int(session.execute(gone).rowcount)  # type: ignore[attr-defined]
 
 

@@ -12,6 +12,7 @@ from sqlalchemy import Select, or_, select
 from sqlalchemy.orm import Session
 
 from service.hooks.types import TEST_TYPE
+from service.moments import moment_text
 from service.store.ids import new_id
 from service.store.tables import Delivery, Event, Hook, Order, Owner
 
@@ -51,7 +52,7 @@ def write_test(session: Session, hook: Hook, *, at: datetime) -> Delivery:
         hook: Whom to tell.
         at: When it was asked for.
     """
-    delivery = new_delivery(hook, message(TEST_TYPE, at=at, data={"hook_id": hook.id}), at=at, event_seq=None)
+    delivery = new_delivery(hook, message(TEST_TYPE, at=at, data={"hook": hook.id}), at=at, event_seq=None)
     session.add(delivery)
     session.flush()
     return delivery
@@ -84,23 +85,18 @@ def new_delivery(hook: Hook, body: str, *, at: datetime, event_seq: int | None) 
 
 
 def message(kind: str, *, at: datetime, data: dict[str, Any]) -> str:
-    """The body of a message, below 20 kB: details that would not fit are left out, and it says so.
+    """The body of a message, below 20 kB: an event's own data that would not fit is left out, and it says so.
 
     Args:
         kind: The type.
         at: When it happened.
-        data: What is told; `details` may be left out of it.
+        data: What is told; its member `data` may be left out.
     """
-    told = {"type": kind, "timestamp": moment_told(at), "data": data}
+    told = {"type": kind, "timestamp": moment_text(at), "data": data}
     body = _compact(told)
     if len(body) < BODY_BYTES:
         return body
-    return _compact({**told, "data": {**data, "details": None, "details_left_out": True}})
-
-
-def moment_told(at: datetime) -> str:
-    """A moment as RFC 3339 says, in UTC with microseconds."""
-    return at.strftime("%Y-%m-%dT%H:%M:%S.%fZ")
+    return _compact({**told, "data": {**data, "data": None, "data_left_out": True}})
 
 
 def _hooks_of(order: Order) -> Select[Hook]:
@@ -120,14 +116,17 @@ def _hooks_of(order: Order) -> Select[Hook]:
 
 
 def _data(event: Event, order: Order) -> dict[str, Any]:
+    """The event as /v1/events tells it, and of the order what tells it apart: most receivers need to ask no more."""
     return {
         "seq": event.seq,
-        "order_id": order.id,
+        "order": order.id,
+        "type": event.type,
+        "at": moment_text(event.at),
+        "by": event.by,
+        "data": event.data,
         "reference": order.reference,
         "state": order.state,
         "is_test": order.is_test,
-        "by": event.by,
-        "details": event.data,
     }
 
 

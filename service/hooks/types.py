@@ -8,7 +8,7 @@ TEST_TYPE = "hook.test"
 MEANINGS = MappingProxyType(
     {
         "order.received": "An order was kept and waits to be planned.",
-        "order.planned": "A plan was made; details.state says where it led: attention, ready or failed.",
+        "order.planned": "A plan was made; data.state says where it led: attention, ready or failed.",
         "order.attention": "A person must decide: a finding forbids cutting, or more is lost than the order allows.",
         "order.ready": "The plan stands without a fault and waits for release.",
         "order.released": "The cutting files may be taken.",

@@ -46,12 +46,14 @@ def test_a_message_holds_type_time_and_what_happened(any_parts: Parts) -> None:
         "timestamp": "2025-12-02T10:00:00.250000Z",
         "data": {
             "seq": event.seq,
-            "order_id": order.id,
+            "order": order.id,
+            "type": "order.received",
+            "at": "2025-12-02T10:00:00.250000Z",
+            "by": "front desk",
+            "data": {"discs": 2},
             "reference": "A-1007",
             "state": "received",
             "is_test": False,
-            "by": "front desk",
-            "details": {"discs": 2},
         },
     }
     assert delivery.id.startswith("msg_")
@@ -149,7 +151,7 @@ def test_hooks_that_are_off_or_deleted_are_told_nothing(any_parts: Parts) -> Non
     assert told_hooks(any_parts) == []
 
 
-def test_details_too_long_for_a_message_are_left_out_and_it_says_so(any_parts: Parts) -> None:
+def test_data_too_long_for_a_message_is_left_out_and_it_says_so(any_parts: Parts) -> None:
     owner = add_owner(any_parts, "one")
     make_hook(any_parts, owner)
 
@@ -158,15 +160,15 @@ def test_details_too_long_for_a_message_are_left_out_and_it_says_so(any_parts: P
 
     body = only_delivery(any_parts).body
     assert len(body.encode()) < BODY_BYTES == 20_000
-    assert json.loads(body)["data"]["details"] is None
-    assert json.loads(body)["data"]["details_left_out"] is True
+    assert json.loads(body)["data"]["data"] is None
+    assert json.loads(body)["data"]["data_left_out"] is True
 
 
-def test_details_that_just_fit_are_told(any_parts: Parts) -> None:
+def test_data_that_just_fits_is_told(any_parts: Parts) -> None:
     owner = add_owner(any_parts, "one")
     make_hook(any_parts, owner)
 
     with any_parts.store.writing() as session:
-        tell_of(session, new_order(owner), EventType.RECEIVED, reason="a" * 19_600)
+        tell_of(session, new_order(owner), EventType.RECEIVED, reason="a" * 19_500)
 
-    assert len(json.loads(only_delivery(any_parts).body)["data"]["details"]["reason"]) == 19_600
+    assert len(json.loads(only_delivery(any_parts).body)["data"]["data"]["reason"]) == 19_500

@@ -62,7 +62,7 @@ def test_a_message_that_is_taken_is_delivered_and_the_reference_library_believes
     (got,) = receiver.got
     told = Webhook(secret).verify(got.body, got.headers)
     assert told["type"] == "order.received"
-    assert told["data"]["order_id"] == order_id
+    assert told["data"]["order"] == order_id
     delivery = only_delivery(parts)
     assert got.headers["webhook-id"] == delivery.id
     assert got.headers["content-type"] == "application/json"
@@ -303,7 +303,7 @@ def test_a_test_is_tried_once(parts: Parts) -> None:
 
     (got,) = receiver.got
     assert json.loads(got.body)["type"] == "hook.test"
-    assert json.loads(got.body)["data"] == {"hook_id": hook_id}
+    assert json.loads(got.body)["data"] == {"hook": hook_id}
     assert only_delivery(parts).state == "failed"
 
 
