@@ -3,28 +3,44 @@
 import logging
 import os
 import sys
+from collections.abc import Iterator
+from datetime import UTC, datetime
 
-from flask import Flask
+from flask import Blueprint, Flask
 
 from layout import walk
+from service.access.rates import Rates
 from service.api.about import about_routes
 from service.api.answers import with_safe_head
+from service.api.asking import guard
 from service.api.catalogue import catalogue_routes
 from service.api.desk import LayoutDesk
+from service.api.events import event_routes
 from service.api.failures import answer_failures
+from service.api.hooks import hook_routes
+from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
 from service.api.layouts import layout_routes
+from service.api.order_decisions import decision_routes
+from service.api.order_files import order_file_routes
+from service.api.orders import order_routes
 from service.api.problem_pages import problem_pages
+from service.api.proofs import proof_routes
 from service.api.sheets import sheet_routes
+from service.api.sign_in import sign_in_routes
 from service.api.trial_pieces import trial_piece_routes
+from service.background.queue import Queue
+from service.orders.proofs import PURPOSE, ProofLinks
+from service.parts import Parts, open_parts
 from service.planner import AnyPlanner
 from service.settings import ServiceSettings, settings_from
 
+OPENED = "discwright opened"
 LOG_LINE = "%(asctime)s %(levelname)s %(message)s"
 
 
 def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner = walk) -> Flask:
-    """The service as a WSGI app.
+    """The service as a WSGI app. Made after a process has forked, never before: it opens the database.
 
     Args:
         settings: None for those that the environment asks for.
@@ -32,22 +48,49 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
 
     Raises:
         SettingsError: The environment asks for something the service cannot do.
+        StoreError: The database does not answer, or has the tables of another version.
     """
     if settings is None:
         settings = settings_from(os.environ)
     _log_to_stderr()
+    parts = open_parts(settings)
+    queue = Queue(settings.queue_url)
     app = Flask("discwright", static_folder=None, template_folder=None)
+    app.extensions[OPENED] = (parts.store, queue)  # what whoever made the app may close
     app.config["MAX_CONTENT_LENGTH"] = settings.limits.upload_bytes + 1  # one more, to see that it is too large
-    desk = LayoutDesk(planner, LayoutCache(settings))
-    app.register_blueprint(layout_routes(desk, settings.limits))
-    app.register_blueprint(trial_piece_routes(settings.limits))
-    app.register_blueprint(sheet_routes(settings.limits))
-    app.register_blueprint(catalogue_routes())
-    app.register_blueprint(about_routes(settings.limits))
-    app.register_blueprint(problem_pages())
     answer_failures(app, settings.limits)
+    guard(app, parts, Rates(settings.access))
+    for routes in (*_routes_of_layouts(planner, settings), *_routes_of_orders(parts, queue)):
+        app.register_blueprint(routes)
     app.after_request(with_safe_head)
     return app
+
+
+def _routes_of_layouts(planner: AnyPlanner, settings: ServiceSettings) -> Iterator[Blueprint]:
+    """What is computed at once and kept for a while."""
+    yield layout_routes(LayoutDesk(planner, LayoutCache(settings)), settings.limits)
+    yield trial_piece_routes(settings.limits)
+    yield sheet_routes(settings.limits)
+    yield catalogue_routes()
+    yield about_routes(settings.limits)
+    yield problem_pages()
+
+
+def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
+    """What is kept, and who may see it."""
+    links = ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
+    yield order_routes(parts, queue.send)
+    yield decision_routes(parts, queue.send, links)
+    yield order_file_routes(parts)
+    yield event_routes(parts)
+    yield proof_routes(parts, links)
+    yield hook_routes(parts)
+    yield key_routes(parts, _now)
+    yield sign_in_routes(parts, _now)
+
+
+def _now() -> datetime:
+    return datetime.now(UTC)
 
 
 def _log_to_stderr() -> None:

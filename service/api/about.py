@@ -4,6 +4,7 @@ from flask import Blueprint, Response, request
 
 from layout.version import ENGINE_VERSION
 from service.api.answers import document_response, json_response
+from service.api.asking import open_to_all
 from service.limits import Limits
 
 ADDRESSES = {
@@ -12,6 +13,10 @@ ADDRESSES = {
     "layouts": "/v1/layouts",
     "trial_pieces": "/v1/trial-pieces",
     "sheets": "/v1/sheets",
+    "orders": "/v1/orders",
+    "events": "/v1/events",
+    "hooks": "/v1/hooks",
+    "keys": "/v1/keys",
     "limits": "/v1/limits",
     "problems": "/problems",
     "health": "/healthz",
@@ -23,16 +28,19 @@ def about_routes(limits: Limits) -> Blueprint:
     routes = Blueprint("about", __name__)
 
     @routes.get("/")
+    @open_to_all
     def tell_addresses() -> Response:
         return document_response(
             {"service": "discwright", "engine_version": ENGINE_VERSION, "links": ADDRESSES}, request
         )
 
     @routes.get("/healthz")
+    @open_to_all
     def tell_health() -> Response:
         return json_response({"status": "ok", "engine_version": ENGINE_VERSION})
 
     @routes.get("/v1/limits")
+    @open_to_all
     def tell_limits() -> Response:
         told = [
             {"name": limit.name, "value": limit.value, "unit": limit.unit, "reason": limit.reason}

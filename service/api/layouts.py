@@ -11,8 +11,10 @@ from urllib.parse import urlencode
 from flask import Blueprint, Request, Response, request
 
 from layout.walk import CUTTING_FILES, FILES, files_for
+from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
+from service.api.asking import open_on_loopback
 from service.api.desk import LayoutDesk
 from service.api.layout_cache import KeptLayout
 from service.api.parameters import read_query
@@ -48,6 +50,7 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
         return read_query(request.args, known=known, most_reason_characters=limits.reason_characters).reason
 
     @routes.post("")
+    @open_on_loopback(Scope.ORDER)
     def make_layout() -> Response:
         _answer_wanted(request, 1)  # what is acceptable in no case is refused before anything is read
         query = read_query(
@@ -62,6 +65,7 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
         return response
 
     @routes.get("/<fingerprint>")
+    @open_on_loopback(Scope.ORDER)
     def tell_layout(fingerprint: str) -> Response:
         kept = _found(desk, fingerprint)
         response = teller.layout(kept, reason_asked("despite_findings"))
@@ -69,6 +73,7 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
         return response
 
     @routes.get("/<fingerprint>/<file_name>")
+    @open_on_loopback(Scope.ORDER)
     def give_file(fingerprint: str, file_name: str) -> Response:
         if file_name not in FILES:
             raise _no_such_file(file_name, "a layout", FILES)

@@ -37,7 +37,7 @@ PARTS = ("tune", "order", "movement", "cutter", "settings")
 UNDECIDED = (State.RECEIVED, State.PLANNING)
 LOOKS_EVERY_S = 0.25  # s; how often a waiting request looks, four cheap reads a second
 
-Send = Callable[[str], None]  # hands an order's id to the queue
+Send = Callable[[str], object]  # hands an order's id to the queue
 
 
 def order_routes(parts: Parts, send: Send) -> Blueprint:

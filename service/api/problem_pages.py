@@ -3,7 +3,9 @@
 from flask import Blueprint, Response, request
 
 from service.api.answers import document_response
-from service.api.problems import PROBLEMS, ProblemError, ProblemKind
+from service.api.asking import open_to_all
+from service.api.problem_kinds import ProblemKind
+from service.api.problems import PROBLEMS, ProblemError
 
 
 def problem_pages() -> Blueprint:
@@ -11,10 +13,12 @@ def problem_pages() -> Blueprint:
     pages = Blueprint("problems", __name__, url_prefix="/problems")
 
     @pages.get("")
+    @open_to_all
     def list_kinds() -> Response:
         return document_response({"problems": [_told(kind) for kind in PROBLEMS.values()]}, request)
 
     @pages.get("/<name>")
+    @open_to_all
     def tell_kind(name: str) -> Response:
         if name not in PROBLEMS:
             raise ProblemError(

@@ -12,7 +12,9 @@ from flask import Blueprint, Request, Response, request
 from layout.documents.sheets import LIMITS, read_sheet_job
 from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
 from layout.sheets.plan import SheetPlan
+from service.access.scopes import Scope
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
+from service.api.asking import open_on_loopback
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import read_query
@@ -48,6 +50,7 @@ def sheet_routes(limits: Limits) -> Blueprint:
     routes = Blueprint("sheets", __name__, url_prefix="/v1/sheets")
 
     @routes.post("")
+    @open_on_loopback(Scope.ORDER)
     def make_sheets() -> Response:
         media_type = _answer_wanted(request)
         read_query(request.args, known=(), most_reason_characters=limits.reason_characters)

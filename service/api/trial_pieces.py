@@ -8,8 +8,10 @@ from flask import Blueprint, Request, Response, request
 
 from layout.documents import Cutter, Movement, shipped_movement_ids
 from layout.trial_walk import trial_files
+from service.access.scopes import Scope
 from service.api.answers import json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
+from service.api.asking import open_on_loopback
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import Query, read_query
@@ -50,6 +52,7 @@ def trial_piece_routes(limits: Limits, make: TrialMaker = trial_files) -> Bluepr
     routes = Blueprint("trial_pieces", __name__, url_prefix="/v1/trial-pieces")
 
     @routes.post("")
+    @open_on_loopback(Scope.ORDER)
     def make_trial_piece() -> Response:
         file_name = _answer_wanted(request)  # what is not acceptable is refused before anything is read
         query = read_query(request.args, known=DOCUMENT_PARTS, most_reason_characters=limits.reason_characters)

@@ -13,6 +13,7 @@ from sqlalchemy import delete, update
 from sqlalchemy.orm import Session
 
 from service.store.ids import new_id
+from service.store.inserting import insert_into
 from service.store.store import Store
 from service.store.tables import KeptAnswer
 
@@ -90,10 +91,10 @@ def claim_or_answer(store: Store, asked: AskedOnce, *, kept_days: int) -> Claim 
             "lease_until": now + timedelta(seconds=CLAIMED_S),
             "expires_at": now + timedelta(days=kept_days),
         }
-        if kept is None:
-            session.add(KeptAnswer(owner_id=asked.owner_id, operation=asked.operation, key=asked.key, **row))
-        else:
+        if kept is not None:
             session.execute(update(KeptAnswer).where(*_row_of(asked)).values(row))
+        elif not _inserted(session, asked, row):
+            raise StillRunningError  # another claimed it between our look and our insert
         return claim
 
 
@@ -121,6 +122,12 @@ def forget_answers(store: Store) -> int:
     with store.writing() as session:
         old = delete(KeptAnswer).where(KeptAnswer.expires_at <= store.now(session))
         return int(session.execute(old).rowcount)  # type: ignore[attr-defined]
+
+
+def _inserted(session: Session, asked: AskedOnce, row: dict[str, Any]) -> bool:
+    named = {"owner_id": asked.owner_id, "operation": asked.operation, "key": asked.key}
+    new = insert_into(session, KeptAnswer).values({**named, **row}).on_conflict_do_nothing()
+    return bool(session.execute(new).rowcount)  # type: ignore[attr-defined]
 
 
 def _row_of(asked: AskedOnce) -> tuple[Any, ...]:

@@ -13,10 +13,10 @@ from dataclasses import dataclass
 from datetime import timedelta
 
 from sqlalchemy import delete, exists, select
-from sqlalchemy.dialects import postgresql, sqlite
 from sqlalchemy.orm import Session
 
 from service.store.files import FileStore
+from service.store.inserting import insert_into
 from service.store.store import Store
 from service.store.tables import FileHold, StoredFile
 
@@ -59,7 +59,7 @@ class FileKeeper:
             now = self._store.now(session)
             for digest, byte_count in sorted(sizes.items()):  # in one order, so that two keepers cannot lock each other
                 row = {"digest": digest, "byte_count": byte_count, "created_at": now}
-                noted = _insert(session)(StoredFile).values(row)
+                noted = insert_into(session, StoredFile).values(row)
                 session.execute(noted.on_conflict_do_update(index_elements=["digest"], set_={"created_at": now}))
 
         self._store.again(noting)
@@ -73,7 +73,7 @@ class FileKeeper:
 def hold(session: Session, held: Hold) -> None:
     """Hold a file that was kept; holding it again changes nothing."""
     row = {"digest": held.digest, "owner_id": held.owner_id, "holder_id": held.holder_id, "what": held.what}
-    session.execute(_insert(session)(FileHold).values(row).on_conflict_do_nothing())
+    session.execute(insert_into(session, FileHold).values(row).on_conflict_do_nothing())
 
 
 def let_go(session: Session, *, holder_id: str, what: str | None = None) -> None:
@@ -102,7 +102,3 @@ def _sweep_one(store: Store, files: FileStore) -> str | None:
             # the next keeper or sweep mends.
             files.remove(digest)
         return digest
-
-
-def _insert(session: Session) -> type[sqlite.Insert] | type[postgresql.Insert]:
-    return sqlite.Insert if session.get_bind().dialect.name == "sqlite" else postgresql.Insert

@@ -1,8 +1,12 @@
 """A planner that computes nothing, and a client that speaks to the service as its users do."""
 
+import atexit
 import json
+import shutil
+import tempfile
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -14,8 +18,10 @@ from layout.check.finding import Code, Finding, Level, Place
 from layout.errors import MidiReadError
 from service.app import create_app
 from service.limits import Limits
-from service.settings import PlaceSettings, ServiceSettings
+from service.parts import open_parts
+from service.settings import AccessSettings, PlaceSettings, ServiceSettings
 
+MANY = (1_000_000, 60)  # requests in so many seconds: more than any test makes
 TUNE = b"MThd a tune"
 BROKEN_TUNE = b"not a tune"
 THIN_WEB = Finding(
@@ -253,6 +259,22 @@ def _spelt(headers: dict[str, str]) -> dict[str, str]:
 
 
 def client_of(planner: Any, folder: Path, limits: Limits | None = None) -> Client:
-    """A client of a service of its own, its layouts kept in a folder."""
-    settings = ServiceSettings(places=PlaceSettings(cache_directory=folder / "layouts"), limits=limits or Limits())
+    """A client of a service of its own on loopback, its data and layouts kept in a folder."""
+    data = folder / "data"
+    if not data.exists():
+        shutil.copytree(_new_data(), data)
+    settings = ServiceSettings(
+        places=PlaceSettings(data_directory=data, cache_directory=folder / "layouts"),
+        access=AccessSettings(listens_on_loopback=True, write_rate=MANY, read_rate=MANY),
+        limits=limits or Limits(),
+    )
     return Client(create_app(settings, planner=planner).test_client())
+
+
+@cache
+def _new_data() -> Path:
+    """A folder of data as the first start makes it; made once, for it takes four times as long as a copy."""
+    folder = Path(tempfile.mkdtemp(prefix="discwright-new-data-"))
+    atexit.register(shutil.rmtree, folder, ignore_errors=True)
+    open_parts(ServiceSettings(places=PlaceSettings(data_directory=folder))).store.close()
+    return folder
