@@ -6,6 +6,8 @@ import threading
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
+from service.store.faults import StoreError
+
 SPREAD = 0.2  # share by which waits differ, so that many workers do not all ask the database at once
 
 log = logging.getLogger(__name__)
@@ -41,6 +43,8 @@ def _keep_doing(chore: Chore, stopping: threading.Event) -> None:
     while not stopping.is_set():
         try:
             chore.work()
+        except StoreError as fault:
+            log.warning("the chore %r is done again in %g s: %s", chore.name, chore.every_s, fault)
         except Exception:
             log.exception("the chore %r went wrong; it is done again in %g s", chore.name, chore.every_s)
         stopping.wait(chore.every_s * random.uniform(1 - SPREAD, 1 + SPREAD))

@@ -62,4 +62,4 @@ class Sweep:
         self._is_full = len(ids) == self._most
         self._found = deque(ids)
         if ids:
-            log.info("%d orders wait too long or have lost their worker; they are taken up", len(ids))
+            log.debug("the sweep found %d orders that wait, or whose worker has gone", len(ids))

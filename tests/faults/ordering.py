@@ -6,20 +6,21 @@ from collections import Counter as Counted
 from dataclasses import dataclass
 from importlib.resources import files
 from pathlib import Path
-from typing import Any
 
 import mido
 from sqlalchemy import select
 
-from service.orders.placing import AskedOrder
+from service.orders.asked import AskedOrder
 from service.orders.planned import OrderInputs, PlannedOrder
 from service.orders.planning import plan_order
 from service.parts import Parts
+from service.planner import AnyPlanner
 from service.store.files import FileStore
 from service.store.holds import FileKeeper
 from service.store.migrating import migrate
 from service.store.store import Store
 from service.store.tables import Event, Order, Plan, PlanFile
+from tests.faults.planner import QuietPlanner
 from tests.service.shop import placed
 
 SHIPPED = files("layout.documents.shipped")
@@ -101,11 +102,17 @@ def assert_events_without_gaps(parts: Parts) -> None:
     assert numbers == list(range(1, len(numbers) + 1))
 
 
-def plan_here(tune: bytes, planner: Any, folder: Path) -> PlannedOrder:
-    """The plan that this process makes of a tune, its files kept apart."""
-    store = Store(f"sqlite:///{folder / 'here.sqlite'}")
-    migrate(store)
-    inputs = OrderInputs(tune=tune, movement=MOVEMENT, cutter=CUTTER, settings=b"{}")
-    planned = plan_order(inputs, planner, FileKeeper(store, FileStore(f"file://{folder / 'here'}")))
-    store.close()
-    return planned
+class PlansHere:
+    """Plans made by this process, their files kept apart."""
+
+    def __init__(self, folder: Path, planner: AnyPlanner | None = None) -> None:
+        """Make a place of its own in a folder; the planner is that of these tests, but does no deeds."""
+        self._planner = planner or QuietPlanner()
+        store = Store(f"sqlite:///{folder / 'here.sqlite'}")
+        migrate(store)
+        self._keeper = FileKeeper(store, FileStore(f"file://{folder / 'here'}"))
+
+    def of(self, tune: bytes) -> PlannedOrder:
+        """The plan of a tune."""
+        inputs = OrderInputs(tune=tune, movement=MOVEMENT, cutter=CUTTER, settings=b"{}")
+        return plan_order(inputs, self._planner, self._keeper)

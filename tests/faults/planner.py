@@ -4,16 +4,30 @@ Given to a worker by its import path, in tests alone.
 """
 
 import ctypes
+import hashlib
 import os
 import re
 import signal
 import sys
 import time
+from dataclasses import replace
 from typing import Any
 
-from tests.service.fakes import FakePlanner
+from tests.service.fakes import FakeLayout, FakePlanner
 
-_PLANNER = FakePlanner()
+
+class QuietPlanner(FakePlanner):
+    """Plans at once, and names the tune in every file, so that no two orders have the same."""
+
+    def lay_out_discs(
+        self, tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None
+    ) -> tuple[FakeLayout, ...]:
+        layouts = super().lay_out_discs(tune, movement, cutter, settings, clock)
+        name = hashlib.sha256(tune).hexdigest()
+        return tuple(replace(layout, title=name, record={**layout.record, "title": name}) for layout in layouts)
+
+
+_PLANNER = QuietPlanner()
 fingerprint_of = _PLANNER.fingerprint_of
 files_of = _PLANNER.files_of
 check_drawing = _PLANNER.check_drawing

@@ -14,8 +14,7 @@ from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanReque
 from service.background.planning_child import ChildEndedError, ChildTooLongError, ChildUnwantedError, PlanningChild
 from service.parts import Parts
 from service.store.holds import FileKeeper
-from tests.faults import planner
-from tests.faults.ordering import CUTTER, MOVEMENT, plan_here, tune_called
+from tests.faults.ordering import CUTTER, MOVEMENT, PlansHere, tune_called
 from tests.service.conftest import parts_of
 
 MEMORY_MIB = 300
@@ -98,7 +97,7 @@ def test_a_child_gives_the_plan_that_this_process_would_make(
     answer = plan(kept_child, request_for(tune))
 
     assert answer.kind is Kind.PLANNED
-    assert answer.planned == plan_here(tune, planner, tmp_path)
+    assert answer.planned == PlansHere(tmp_path).of(tune)
 
 
 def test_one_child_serves_many_orders(kept_child: PlanningChild, request_for: Requests) -> None:

@@ -10,6 +10,7 @@ from pathlib import Path
 import pytest
 from sqlalchemy import update
 
+from layout import walk
 from service.background.chores import Chore
 from service.background.queue import Queue
 from service.background.worker import Worker
@@ -17,9 +18,8 @@ from service.orders import taking
 from service.orders.states import State
 from service.parts import Parts
 from service.store.tables import Order
-from tests.faults import planner
-from tests.faults.ordering import assert_planned_once, look, place, plan_here, tune_called
-from tests.service.shop import open_shop
+from tests.faults.ordering import PlansHere, assert_planned_once, look, place, tune_called
+from tests.service.shop import TUNE, open_shop
 
 PLANNER = "tests.faults.planner"
 WITHIN_S = 40.0
@@ -81,8 +81,20 @@ def test_an_order_is_planned_once_though_its_message_comes_twice(shop: Parts, tm
     with at_work(shop):
         wait_for_state(shop, last_id, State.READY)
 
-    assert_planned_once(shop, order_id, plan_here(tune, planner, tmp_path))
+    assert_planned_once(shop, order_id, PlansHere(tmp_path).of(tune))
     assert look(shop, order_id).attempt == 1
+
+
+def test_the_real_computation_in_a_child_gives_the_files_that_it_gives_here(small_shop: Parts, tmp_path: Path) -> None:
+    order_id = place(small_shop, TUNE)
+    send(small_shop, order_id)
+    worker = Worker(with_work(small_shop), slots=1)
+
+    worker.start()
+    wait_for_state(small_shop, order_id, State.READY)
+    worker.stop()
+
+    assert_planned_once(small_shop, order_id, PlansHere(tmp_path, walk).of(TUNE))
 
 
 def test_an_order_whose_message_is_lost_is_found_by_the_sweep(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
