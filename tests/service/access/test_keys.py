@@ -21,7 +21,7 @@ from service.access.secret_texts import could_be_key, new_key_secret
 from service.parts import Parts
 from service.store.faults import StoreBusyError
 from service.store.store import Store
-from service.store.tables import Key, Owner
+from service.store.tables import BrowserSession, Key, LoginLink, Owner
 
 NOW = datetime(2026, 12, 2, 10, 0, tzinfo=UTC)
 READING = KeyAsked(title="the web shop", scopes=frozenset({Scope.ORDER, Scope.READ}))
@@ -128,6 +128,9 @@ def test_a_revoked_key_opens_nothing_nor_do_its_browsers_and_links(any_parts: Pa
     assert find_key(store, new.secret) is None
     assert find_browser(store, browser.secret, NOW) is None
     assert sign_in_by_link(store, link, NOW, timedelta(hours=1)) is None
+    with store.reading() as session:
+        assert session.scalars(select(BrowserSession.key_id)).all() == []
+        assert session.scalars(select(LoginLink.key_id)).all() == []
 
 
 def test_a_key_revoked_twice_keeps_the_first_moment(any_parts: Parts) -> None:
