@@ -14,7 +14,7 @@ import pytest
 from sqlalchemy import select
 from standardwebhooks import Webhook
 
-from service.hooks.deliveries import Holder, HookOffError, redeliver
+from service.hooks.deliveries import Holder, HookOffError, count_deliveries, redeliver
 from service.hooks.keeping import ask_for_test, change_hook, delete_hook, enable_hook, find_hook, rotate_secret
 from service.hooks.posting import Answer
 from service.hooks.sending import WAITS, Result, Taken, Ways, lease_of, retry_after, send, take, write_result
@@ -179,6 +179,8 @@ def test_a_hook_that_is_gone_is_turned_off_and_what_waits_for_it_given_up(any_pa
         place(parts, shop)
         place(parts, shop)
         assert deliver_due(parts, NOW) == 1
+        with parts.store.reading() as session:
+            assert count_deliveries(session) == {"waiting": 0, "delivered": 0, "failed": 2}
         place(parts, shop)
         assert deliver_due(parts, NOW + timedelta(days=9)) == 0
 
@@ -254,6 +256,22 @@ def test_a_hook_that_is_overrun_is_left_in_peace_and_then_told_all(
         assert deliver_due(parts, until + SECOND, ways=WITHOUT_JITTER) == 2
 
     assert len(receiver.got) == 3
+
+
+@pytest.mark.parametrize(("asked", "waits_s"), [("120", 120), ("2", 5), ("soon", 5)])
+def test_a_message_waits_as_long_as_its_hook_asks_for_but_no_less_than_else(
+    parts: Parts, asked: str, waits_s: int
+) -> None:
+    parts = reaching_loopback(parts)
+    with listening(Receiver(answer=answering(500, Retry_After=asked))) as receiver:
+        shop, hook_id, _ = shop_with_hook(parts, receiver.url)
+        place(parts, shop)
+        deliver_due(parts, NOW, ways=WITHOUT_JITTER)
+
+    due = only_delivery(parts).next_try_at
+    assert due is not None
+    assert round((due - NOW).total_seconds()) == waits_s
+    assert hook_row(parts, hook_id).quiet_until is None
 
 
 @pytest.mark.parametrize("status", [500, 503, 404])
@@ -360,6 +378,27 @@ def test_the_result_of_one_who_slept_past_the_lease_is_thrown_away(any_parts: Pa
     delivery = only_delivery(any_parts)
     assert (delivery.state, delivery.tries, delivery.last_status) == ("delivered", 2, 200)
     assert hook_row(any_parts, other.hook_id).disabled_at is None
+
+
+def test_a_result_from_before_a_message_was_asked_for_again_is_thrown_away(any_parts: Parts) -> None:
+    shop, *_ = shop_with_hook(any_parts, "https://shop.example/")
+    place(any_parts, shop)
+    late = take_only(any_parts, NOW)
+    assert late is not None
+    with any_parts.store.writing() as session:  # given up by another meanwhile
+        row = session.scalars(select(Delivery)).one()
+        row.state, row.tries, row.next_try_at, row.finished_at = "failed", 10, None, NOW
+    with any_parts.store.writing() as session:
+        redeliver(session, Holder(owner_id=shop, is_test=False), late.id, now=NOW + SECOND)
+    again = take_only(any_parts, NOW + SECOND)
+    assert again is not None
+    assert again.tries == late.tries == 1
+
+    with any_parts.store.writing() as session:
+        good = Result(answer=Answer(status=200, retry_after=None), error=None)
+        assert not write_result(session, late, good, now=NOW + SECOND, jitter=0)
+
+    assert only_delivery(any_parts).state == "waiting"
 
 
 def test_a_process_killed_between_sending_and_writing_sends_again_with_the_same_id(
