@@ -75,15 +75,18 @@ def _stream(after: int, more: More) -> Iterator[bytes]:
     """Events as they come, each under its number, so that a client that connects anew goes on from there."""
     begun = breathed = time.monotonic()
     yield f"retry: {RETRY_MS}\n\n".encode()
-    while time.monotonic() - begun < STREAMS_FOR_S:
+    while True:
         events = more(after)
         for event in events:
             after = event.seq
             yield f"id: {event.seq}\nevent: {event.type}\ndata: {json.dumps(event_told(event))}\n\n".encode()
+        now = time.monotonic()
+        if now - begun >= STREAMS_FOR_S:
+            return
         if events:
-            breathed = time.monotonic()
+            breathed = now
             continue
-        if time.monotonic() - breathed >= BREATHES_EVERY_S:
-            breathed = time.monotonic()
+        if now - breathed >= BREATHES_EVERY_S:
+            breathed = now
             yield b": still here\n\n"
         time.sleep(LOOKS_EVERY_S)

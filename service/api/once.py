@@ -60,6 +60,8 @@ def once(
         return _response(claim)
     try:
         order = work(lambda session, view: keep_answer(session, claim, answer(view)))
+    except StillRunningError as fault:  # it took so long that another took its claim over; nothing was done
+        raise _still_running(key) from fault
     except BaseException:
         give_up(parts.store, claim)
         raise
@@ -77,11 +79,15 @@ def _claimed(parts: Parts, asker: Asker, asked: Request, key: str, brought: Mapp
             name="key-reused", detail=f"the {FIELD} {key!r} was used for a request that brought something else"
         ) from fault
     except StillRunningError as fault:
-        raise ProblemError(
-            name="still-running",
-            detail=f"a request with the {FIELD} {key!r} is being answered at this moment",
-            headers={"Retry-After": str(RETRY_AFTER_S)},
-        ) from fault
+        raise _still_running(key) from fault
+
+
+def _still_running(key: str) -> ProblemError:
+    return ProblemError(
+        name="still-running",
+        detail=f"a request with the {FIELD} {key!r} is being answered at this moment",
+        headers={"Retry-After": str(RETRY_AFTER_S)},
+    )
 
 
 def _key(asked: Request) -> str | None:

@@ -127,7 +127,7 @@ def forget_answers(store: Store) -> int:
 def _inserted(session: Session, asked: AskedOnce, row: dict[str, Any]) -> bool:
     named = {"owner_id": asked.owner_id, "operation": asked.operation, "key": asked.key}
     new = insert_into(session, KeptAnswer).values({**named, **row}).on_conflict_do_nothing()
-    return bool(session.execute(new).rowcount)  # type: ignore[attr-defined]
+    return session.scalars(new.returning(KeptAnswer.token)).first() is not None
 
 
 def _row_of(asked: AskedOnce) -> tuple[Any, ...]:
