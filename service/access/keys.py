@@ -3,10 +3,12 @@
 import hmac
 import logging
 import re
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from datetime import datetime, timedelta
 
-from sqlalchemy import Select, delete, or_, select, update
+from sqlalchemy import Select, delete, or_, select, text, update
 from sqlalchemy.orm import Session
 
 from service.access.asker import Asker
@@ -15,12 +17,13 @@ from service.access.scopes import Scope, in_order, scopes_of
 from service.access.secret_texts import could_be_key, digest_of, new_key_secret
 from service.store.faults import StoreError
 from service.store.ids import new_id
-from service.store.store import Store
+from service.store.store import BUSY_TIMEOUT_S, Store
 from service.store.tables import BrowserSession, Key, LoginLink, Owner
 
 log = logging.getLogger("discwright")
 
 KEY_ID = re.compile("key_[0-9a-f]{32}")  # other texts are no ids, and some no database takes
+NOTE_WITHIN_MS = 100  # ms; longer than a transaction of the service takes, short enough not to be felt
 USE_NOTED_EVERY = timedelta(minutes=1)  # so that reading stays reading: one write a minute for each key
 
 
@@ -150,7 +153,7 @@ def in_force(key: Key, owner: Owner) -> KeyInForce:
 def note_use(store: Store, key: KeyInForce, now: datetime) -> bool:
     """Note that a key is used now, where the last note is more than a minute old.
 
-    The request goes on where the note cannot be written: it is no reason to refuse one that only reads.
+    The request goes on where the note cannot be written at once: that is no reason to hold up one that only reads.
 
     Returns:
         Whether it was written, by this process.
@@ -160,7 +163,7 @@ def note_use(store: Store, key: KeyInForce, now: datetime) -> bool:
         return False
     stale = or_(Key.last_used_at.is_(None), Key.last_used_at <= before)
     try:
-        with store.writing() as session:
+        with _writing_at_once(store) as session:
             wanted = update(Key).where(Key.id == key.asker.key_id, stale).values(last_used_at=now)
             return session.execute(wanted.returning(Key.id)).first() is not None
     except StoreError as fault:
@@ -219,6 +222,25 @@ def revoke_key(store: Store, key_id: str, now: datetime, *, owner_id: str | None
         session.execute(delete(BrowserSession).where(BrowserSession.key_id == key_id))
         session.execute(delete(LoginLink).where(LoginLink.key_id == key_id))
         return _told(key, _owner_told(owner))
+
+
+@contextmanager
+def _writing_at_once(store: Store) -> Iterator[Session]:
+    """A transaction that gives up where another is writing, instead of waiting its turn.
+
+    It is none of `Store.writing`, which waits before the first statement. The connection waits as before when this
+    one is done with it.
+    """
+    with store.reading() as session:
+        if not store.is_sqlite:
+            session.execute(text(f"SET LOCAL lock_timeout = {NOTE_WITHIN_MS}"))
+            yield session
+            return
+        session.execute(text(f"PRAGMA busy_timeout = {NOTE_WITHIN_MS}"))
+        try:
+            yield session
+        finally:
+            session.execute(text(f"PRAGMA busy_timeout = {BUSY_TIMEOUT_S * 1000}"))
 
 
 def _keys_and_owners() -> Select[Key, Owner]:

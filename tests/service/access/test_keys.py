@@ -2,6 +2,7 @@
 
 import logging
 import threading
+import time
 from collections.abc import Iterator
 from datetime import UTC, datetime, timedelta
 from hashlib import sha256
@@ -9,7 +10,7 @@ from hashlib import sha256
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-from sqlalchemy import event, select, text
+from sqlalchemy import event, select, text, update
 
 from service.access import keys
 from service.access.asker import Asker
@@ -19,7 +20,6 @@ from service.access.owners import OwnerTold, TitleError, checked_title, hold_acc
 from service.access.scopes import MEANINGS, Scope, ScopeError, scopes_of
 from service.access.secret_texts import could_be_key, new_key_secret
 from service.parts import Parts
-from service.store.faults import StoreBusyError
 from service.store.store import Store
 from service.store.tables import BrowserSession, Key, LoginLink, Owner
 
@@ -206,23 +206,39 @@ def test_reading_with_a_key_used_just_now_writes_nothing(parts: Parts, statement
     assert [line.split()[0] for line in statements] == ["BEGIN", "SELECT"]
 
 
-def test_a_request_goes_on_where_its_use_cannot_be_noted(
-    parts: Parts, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture
+def test_a_request_goes_on_at_once_where_its_use_cannot_be_noted(
+    any_parts: Parts, caplog: pytest.LogCaptureFixture
 ) -> None:
-    new = made(parts.store)
-    found = find_key(parts.store, new.secret)
-    assert found is not None
+    store = any_parts.store
+    new = made(store)
+    other = Store(any_parts.settings.database_url)
+    with other.writing() as session:  # another holds the database, or the key
+        session.execute(update(Key).values(title="held"))
 
-    def refuse(_: Store) -> None:
-        raise StoreBusyError("the database is held by another")
-
-    monkeypatch.setattr(Store, "writing", refuse)
-    with caplog.at_level(logging.WARNING, "discwright"):
-        noted = note_use(parts.store, found, NOW)
+        begun_s = time.monotonic()
+        with caplog.at_level(logging.WARNING, "discwright"):
+            found = find_key(store, new.secret)
+            assert found is not None
+            noted = note_use(store, found, NOW)
+        took_s = time.monotonic() - begun_s
+    other.close()
 
     assert noted is False
-    assert f"the use of key {new.told.id} is not noted: the database is held" in caplog.text
+    assert took_s < 5  # a writer would wait thirty
+    assert f"the use of key {new.told.id} is not noted: the database " in caplog.text
     assert new.secret not in caplog.text
+    assert note_use(store, found, NOW)
+
+
+def test_who_writes_after_a_use_was_noted_waits_its_turn_as_before(parts: Parts) -> None:
+    found = find_key(parts.store, made(parts.store).secret)
+    assert found is not None
+    note_use(parts.store, found, NOW)
+
+    with parts.store.reading() as session:  # the one connection of the pool that was used
+        waits_ms = session.execute(text("PRAGMA busy_timeout")).scalar_one()
+
+    assert waits_ms == 30_000
 
 
 def test_owners_are_made_once_though_many_ask_at_a_time(any_parts: Parts) -> None:
