@@ -271,8 +271,12 @@ class Run(Row):
     id: Mapped[str] = mapped_column(ID, primary_key=True)
     owner_id: Mapped[str] = mapped_column(ForeignKey("owners.id"), index=True)
     key_id: Mapped[str] = mapped_column(ForeignKey("keys.id"))
+    is_test: Mapped[bool]
     reference: Mapped[str | None] = mapped_column(String(200))
+    archive_digest: Mapped[str] = mapped_column(DIGEST)  # of the tunes, held in the store of files
+    asked: Mapped[Facts]  # what all its orders have in common
     order_count: Mapped[int]
+    opened_at: Mapped[datetime | None]  # when every pair had become an order or was refused
     created_at: Mapped[datetime]
 
 
@@ -284,6 +288,8 @@ class RunItem(Row):
     number: Mapped[int]  # from 1, in the order asked
     tune_name: Mapped[str] = mapped_column(String(200))
     movement_id: Mapped[str] = mapped_column(String(64))
+    movement_revision: Mapped[int | None]
+    reference: Mapped[str | None] = mapped_column(String(200))
     order_id: Mapped[str | None] = mapped_column(ForeignKey("orders.id"))
     refused: Mapped[str | None] = mapped_column(String(500))
     __table_args__ = (PrimaryKeyConstraint("run_id", "number"),)
