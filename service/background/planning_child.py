@@ -41,12 +41,17 @@ class ChildUnwantedError(Exception):
 class PlanningChild:
     """A child that plans. Started and used by one thread, with whose end it ends too."""
 
-    def __init__(self, setup: ChildSetup) -> None:
+    def __init__(self, setup: ChildSetup, is_wanted: Callable[[], bool] = lambda: True) -> None:
         """Start a child, and wait until it is warm.
+
+        Args:
+            setup: What it is told.
+            is_wanted: Asked now and then; where it says no, the child is killed.
 
         Raises:
             ChildEndedError: It ended before.
             ChildTooLongError: It did not get ready.
+            ChildUnwantedError: It was not wanted any more.
         """
         self._process = subprocess.Popen(
             CHILD, stdin=subprocess.PIPE, stdout=subprocess.PIPE, env={**os.environ, **ALONE}
@@ -57,7 +62,7 @@ class PlanningChild:
         self._pipes = (self._process.stdin, self._process.stdout)
         self._reader = FrameReader(self._process.stdout.fileno())
         self._most_mib = setup.memory_mib / 2
-        self._warm_mib = self._resident_mib = self._ask(as_json(setup), WARM_WITHIN_S, lambda: True).resident_mib
+        self._warm_mib = self._resident_mib = self._ask(as_json(setup), WARM_WITHIN_S, is_wanted).resident_mib
 
     @property
     def pid(self) -> int:

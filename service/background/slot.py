@@ -182,9 +182,11 @@ class Slot:
             self._end_child()
         if self._child is None:
             try:
-                self._child = PlanningChild(self._shared.setup)
-            except (ChildEndedError, ChildTooLongError, ChildUnwantedError, OSError) as fault:
-                log.error("no child could be started: %s", fault)
+                self._child = PlanningChild(self._shared.setup, lambda: not self._shared.stopping.is_set())
+            except ChildUnwantedError:
+                log.debug("the worker stops before its child is warm")
+            except (ChildEndedError, ChildTooLongError, OSError) as fault:
+                log.error("no child could be started: %s", str(fault) or "it did not get ready in time")
         return self._child is not None
 
     def _end_child(self) -> None:

@@ -8,7 +8,7 @@ import signal
 import socket
 import threading
 import time
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from types import FrameType
 
 from service.background.chores import Chore, start_chores
@@ -103,8 +103,12 @@ class Worker:
         return any(slot.is_alive() for slot in self._slots)
 
 
-def work_until_told(worker: Worker) -> bool:
+def work_until_told(worker: Worker, say_started: Callable[[], None] = lambda: None) -> bool:
     """Run a worker in this process until SIGTERM or SIGINT; a second one hands its orders back at once.
+
+    Args:
+        worker: Not started yet.
+        say_started: Called once signals are heeded and orders are taken.
 
     Returns:
         Whether it stopped with nothing in hand.
@@ -118,6 +122,7 @@ def work_until_told(worker: Worker) -> bool:
     for number in (signal.SIGTERM, signal.SIGINT):
         signal.signal(number, tell)
     worker.start()
+    say_started()
     os.read(told, 1)
     hurry = threading.Event()
     threading.Thread(target=_hurry_when_told, args=(told, hurry), daemon=True).start()

@@ -41,7 +41,10 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
         parts = open_parts(settings_from(os.environ))
     except (SettingsError, StoreError) as error:
         raise CommandError(str(error)) from error
-    sys.stderr.write(f"planning orders in {asked.slots} slots until Ctrl-C\n")
-    sys.stderr.flush()
-    work_until_told(Worker(parts, slots=asked.slots))
+    work_until_told(Worker(parts, slots=asked.slots), lambda: _say_started(asked.slots))
     return GOOD
+
+
+def _say_started(slots: int) -> None:
+    sys.stderr.write(f"planning orders, {'one' if slots == 1 else slots} at a time, until Ctrl-C\n")
+    sys.stderr.flush()

@@ -9,10 +9,12 @@ import sys
 import tempfile
 import time
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
 
+from service.parts import Parts
 from tests.faults.fleet import Fleet, Stream, hold_database, wait_for, wait_until_none_is_open
 from tests.faults.judging import assert_all_planned_once
 from tests.faults.ordering import states
@@ -24,7 +26,7 @@ KILLS = 60
 ORDERS = 200
 EVERY_S = 1.0  # s; between two orders, on the average
 WORKERS = 3
-QUIET_S = (0.5, 3.0)  # s; between two kills
+AIMS_S = 0.5  # s; the most between seeing an order in hand and the kill
 LOCKED_S = 40.0
 CUTS_S = (3.0, 30.0)
 ALL_WITHIN_S = 1800.0
@@ -34,7 +36,7 @@ HASTE = {"DISCWRIGHT_LEASE_S": "3", "DISCWRIGHT_SWEEP_S": "1", "DISCWRIGHT_ATTEM
 def main(seed: int) -> int:
     """Run on both databases; gives the exit code."""
     logging.getLogger("service").setLevel(logging.ERROR)  # the workers' own logs are kept apart
-    outcomes = [_run("SQLite", seed, None, {KILLS // 2: lambda folder: _lock(folder)})]
+    outcomes = [_run("SQLite", seed, None, {KILLS // 2: _lock})]
     with own_server() as server:
         cuts = {KILLS // 3 * (number + 1): _cut(server.cut_for, cut_s) for number, cut_s in enumerate(CUTS_S)}
         outcomes.append(_run("PostgreSQL", seed, new_database(server.url), cuts))
@@ -51,9 +53,10 @@ def _run(name: str, seed: int, url: str | None, between: dict[int, Callable[[Pat
         fleet = Fleet({**environment_of(folder, url), **HASTE}, folder / "log", workers=WORKERS)
         stream = Stream(parts, orders=ORDERS, every_s=EVERY_S, chance=chance)
         for number in range(KILLS):
-            wait_for(lambda: "planning" in states(parts, list(stream.tunes)), within_s=120)
+            due = number * ORDERS // KILLS  # so many orders are placed before this kill
+            wait_for(partial(_is_time, parts, stream, due), within_s=ALL_WITHIN_S)
             between.get(number, _nothing)(folder)
-            time.sleep(chance.uniform(*QUIET_S))
+            time.sleep(chance.uniform(0.0, AIMS_S))
             fleet.kill_one(chance)
         stream.wait()
         ids = list(stream.tunes)
@@ -71,6 +74,11 @@ def _run(name: str, seed: int, url: str | None, between: dict[int, Callable[[Pat
         )
         parts.store.close()
     return is_right
+
+
+def _is_time(parts: Parts, stream: Stream, due: int) -> bool:
+    placed = list(stream.tunes)
+    return len(placed) > due and "planning" in states(parts, placed)
 
 
 def _lock(folder: Path) -> None:
