@@ -4,6 +4,7 @@ import http.client
 import socket
 import ssl
 import threading
+import time
 from collections.abc import Mapping, Sequence
 from contextlib import suppress
 from dataclasses import dataclass
@@ -79,7 +80,7 @@ class _Deadline:
 
     def __init__(self, within_s: float) -> None:
         self.within_s = within_s
-        self.is_over = False
+        self._ends_at = time.monotonic() + within_s
         self._lock = threading.Lock()
         self._held: list[socket.socket] = []
         self._timer = threading.Timer(within_s, self._cut)
@@ -98,6 +99,15 @@ class _Deadline:
                 one.close()
             self._held.clear()
 
+    @property
+    def is_over(self) -> bool:
+        """Whether the time is up."""
+        return time.monotonic() >= self._ends_at
+
+    def left_s(self) -> float:
+        """Seconds that are left; never none, for no time at all means something else to a socket."""
+        return max(0.001, self._ends_at - time.monotonic())
+
     def hold(self, connected: socket.socket) -> None:
         """Cut this one too; a second handle is kept, since TLS takes the first."""
         with self._lock:
@@ -107,7 +117,6 @@ class _Deadline:
 
     def _cut(self) -> None:
         with self._lock:
-            self.is_over = True
             for one in self._held:
                 with suppress(OSError):  # the other side was quicker
                     one.shutdown(socket.SHUT_RDWR)
@@ -136,10 +145,11 @@ def _connected(target: Target, addresses: Sequence[str], tls: ssl.SSLContext, de
     fault: HTTPError | None = None
     for address in addresses:
         connection: _Plain | _Secure
+        wait_s = min(CONNECT_S, deadline.left_s())
         if target.scheme == "https":
-            connection = _Secure(address, target.port, timeout=CONNECT_S, ssl_context=tls, server_hostname=target.host)
+            connection = _Secure(address, target.port, timeout=wait_s, ssl_context=tls, server_hostname=target.host)
         else:
-            connection = _Plain(address, target.port, timeout=CONNECT_S)
+            connection = _Plain(address, target.port, timeout=wait_s)
         connection.deadline = deadline
         try:
             connection.connect()

@@ -2,6 +2,7 @@ import socket
 import ssl
 import time
 from collections.abc import Callable
+from contextlib import ExitStack
 from pathlib import Path
 
 import pytest
@@ -159,6 +160,19 @@ def test_where_nobody_picks_up_it_is_told() -> None:
 
     with pytest.raises(PostError, match=r"^nobody picked up at the host's addresses$"):
         posted(plain(port), addresses=2)
+
+
+def test_where_nobody_answers_the_knock_time_is_up_for_all_addresses_together() -> None:
+    with socket.create_server(("127.0.0.1", 0), backlog=0) as server, ExitStack() as waiting:
+        for _ in range(8):  # fill the queue of those who wait to be let in; who comes then is not answered at all
+            knocking = waiting.enter_context(socket.socket())
+            knocking.settimeout(0)
+            knocking.connect_ex(server.getsockname())
+        started = time.monotonic()
+        with pytest.raises(PostError, match=r"^no answer within 1 s$"):
+            posted(plain(server.getsockname()[1]), within_s=1, addresses=3)
+
+    assert 0.9 < time.monotonic() - started < 3
 
 
 def test_the_next_address_is_tried_where_nobody_picks_up_at_the_first() -> None:

@@ -203,6 +203,25 @@ def test_a_hook_that_is_gone_is_turned_off_and_what_waits_for_it_given_up(any_pa
         assert deliver_due(parts, NOW) == 1
 
 
+def test_what_waits_for_a_hook_that_is_gone_is_given_up_at_once_but_for_what_is_being_sent(any_parts: Parts) -> None:
+    shop, hook_id, _ = shop_with_hook(any_parts, "https://shop.example/")
+    for _ in range(3):
+        place(any_parts, shop)
+    with any_parts.store.writing() as session:
+        first, second, _ = session.scalars(select(Delivery.id).order_by(Delivery.id)).all()
+        taken, other = (take(session, one, now=NOW, lease=lease_of(any_parts)) for one in (first, second))
+        assert taken is not None
+        assert other is not None
+
+    with any_parts.store.writing() as session:
+        write_result(session, taken, Result(answer=Answer(status=410, retry_after=None), error=None), now=NOW, jitter=0)
+
+    with any_parts.store.reading() as session:
+        assert count_deliveries(session) == {"waiting": 1, "delivered": 0, "failed": 2}
+        assert session.get_one(Delivery, other.id).state == "waiting"
+        assert session.get_one(Hook, hook_id).disabled_at == NOW
+
+
 def test_an_address_that_is_gone_says_nothing_of_the_one_set_meanwhile(any_parts: Parts) -> None:
     parts = reaching_loopback(any_parts)
     shop, hook_id, _ = shop_with_hook(parts, "http://127.0.0.1:9/old")

@@ -1,14 +1,19 @@
+import os
+import subprocess
+import sys
 import threading
 import time
 from collections import Counter
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import replace
+from pathlib import Path
 
 from service.hooks.deliveries import count_deliveries
 from service.hooks.telling import MOST_PER_HOOK, tell_hooks
 from service.parts import Parts
 from service.settings import WorkSettings
+from tests.service.conftest import environment_of
 from tests.service.hooks.receivers import Got, Receiver, listening
 from tests.service.hooks.rows import add_owner, make_hook, place, reaching_loopback
 
@@ -141,6 +146,42 @@ def test_told_to_stop_it_ends_in_time_though_a_hook_hangs_and_the_message_goes_o
         assert counts(parts)["waiting"] == 1
         never.set()
         assert becomes_true(lambda: counts(parts)["delivered"] == 1)
+
+
+def test_a_process_that_is_told_to_stop_ends_though_a_hook_hangs(parts: Parts, tmp_path: Path) -> None:
+    lines = (
+        "import os, signal, threading; from service.hooks.telling import tell_hooks;"
+        "from service.parts import open_parts; from service.settings import settings_from;"
+        "stop = threading.Event(); signal.signal(signal.SIGTERM, lambda *_: stop.set());"
+        "tell_hooks(open_parts(settings_from(os.environ)), stop)"
+    )
+    variables = environment_of(tmp_path) | {
+        "DISCWRIGHT_HOOK_NETWORKS": "127.0.0.0/8",
+        "DISCWRIGHT_HOOK_HTTP": "yes",
+        "DISCWRIGHT_HOOK_TIMEOUT_S": "60",
+        "DISCWRIGHT_STOP_WITHIN_S": "2",
+    }
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    never = threading.Event()
+
+    def hang(_got: Got) -> tuple[int, dict[str, str]]:
+        never.wait(60)
+        return 200, {}
+
+    with listening(Receiver(answer=hang)) as receiver:
+        make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        with subprocess.Popen([sys.executable, "-c", lines], env=os.environ | variables) as process:
+            try:
+                assert becomes_true(lambda: len(receiver.got) == 1, within_s=60)
+                process.terminate()
+                assert process.wait(timeout=15) == 0
+            finally:
+                process.kill()
+                never.set()
+
+    assert counts(parts)["waiting"] == 1
 
 
 def test_what_is_being_sent_is_seen_to_its_end(parts: Parts) -> None:
