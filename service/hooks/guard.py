@@ -148,7 +148,7 @@ def checked_addresses(target: Target, rules: Rules, *, resolve: Resolver) -> tup
         try:
             allowed = is_allowed(ipaddress.ip_address(one), rules.networks)
         except ValueError:
-            allowed = False  # an address with a zone, such as fe80::1%eth0, or none at all
+            allowed = False  # no address at all
         if not allowed:
             raise AddressRefusedError("the host's name leads to an address that is not public")
     return tuple(dict.fromkeys(found))

@@ -141,6 +141,8 @@ def test_a_name_without_addresses_and_one_with_a_zone_are_refused() -> None:
         checked_addresses(target, STRICT, resolve=resolving())
     with pytest.raises(AddressRefusedError, match="not public"):
         checked_addresses(target, STRICT, resolve=resolving("fe80::1%eth0"))
+    with pytest.raises(AddressRefusedError, match="not public"):
+        checked_addresses(target, STRICT, resolve=resolving("no address"))
 
 
 def test_a_name_that_cannot_be_looked_up_is_refused() -> None:

@@ -92,6 +92,7 @@ def test_the_example_keeps_a_message_of_the_service_once_though_it_comes_twice(
     with parts.store.writing() as session:  # as where the sender was killed before it could write the answer down
         session.execute(update(Delivery).values(state="waiting", next_try_at=now, finished_at=None))
     assert deliver_due(parts, now + timedelta(seconds=2)) == 1
+    assert only_delivery(parts).state == "delivered"  # what is known already is taken all the same
 
     assert example.kept() == [(delivery.id, delivery.body)]
 
