@@ -123,6 +123,15 @@ def fingerprint_of(tune: bytes, movement: Movement, cutter: Cutter, settings: Se
     return hashlib.sha256(json.dumps(parts, sort_keys=True).encode()).hexdigest()[:16]
 
 
+def check_tune(tune: bytes, settings: Settings) -> None:
+    """See that a tune can be read, without laying it out.
+
+    Raises:
+        MidiReadError: It cannot, or has no sequence of the number that the settings ask for.
+    """
+    read_score(tune, sequence=settings.sequence)
+
+
 def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None) -> LaidOut:
     """The tune laid out on one disc for this movement and cutter, checked.
 

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from sqlalchemy.orm import Session
 
 from layout.documents import Cutter, Movement, Settings, read_cutter, read_movement, read_settings
-from layout.read import read_score
+from layout.walk import check_tune
 from service.access.asker import Asker
 from service.orders.faults import InputRefusedError
 from service.orders.planned import OrderInputs
@@ -97,7 +97,7 @@ def read_order(store: Store, asker: Asker, asked: AskedOrder) -> ReadOrder:
         movement = _document(session, asker, "movement", asked.movement)
         cutter = _document(session, asker, "cutter", asked.cutter)
     settings = read_settings(asked.settings)
-    read_score(asked.tune, sequence=settings.sequence)
+    check_tune(asked.tune, settings)
     return ReadOrder(
         inputs=OrderInputs(tune=asked.tune, movement=movement.text, cutter=cutter.text, settings=asked.settings),
         movement=read_movement(movement.text),

@@ -1,5 +1,7 @@
 """Repeat orders: the files of a released plan again, byte for byte, never planned anew."""
 
+from datetime import datetime
+
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
@@ -53,54 +55,15 @@ def repeat_order(store: Store, asker: Asker, asked: AskedRepeat, also: Also) -> 
         order = session.get(Order, made[0])
         if order is not None:  # the connection was lost after the commit
             return order_view(session, order)
-        first = order_row(session, asker, asked.repeat_of)
-        plan = session.get(Plan, (first.id, first.plan_revision))
-        if first.state != State.RELEASED or plan is None or first.erased_at is not None:
-            raise StateForbidsError(f"the order {first.id} is {first.state}; a released one alone can be repeated")
+        first, plan = _released(session, asker, asked.repeat_of)
         check_hook(session, asker, asked.hook_id)
-        state = State.READY
-        if plan.release_reason is not None:
-            state = State.ATTENTION
-        elif asked.release_alone:
-            state = State.RELEASED
-        order = Order(
-            id=made[0],
-            owner_id=asker.owner_id,
-            key_id=asker.key_id,
-            is_test=asker.is_test,
-            state=state.value,
-            version=1,
-            reference=asked.reference,
-            quantity=asked.quantity,
-            most_lost_share=first.most_lost_share,
-            release_alone=asked.release_alone,
-            hook_id=asked.hook_id,
-            repeat_of=first.id,
-            plan_revision=1,
-            reason=_reason(plan),
-            created_at=now,
-            updated_at=now,
-            finished_at=now if state is State.RELEASED else None,
-            attempt=0,
-            killed=0,
-            **{name: getattr(first, name) for name in _TAKEN_OVER},
-        )
+        state = _state_of(plan, asked)
+        order = _row(made[0], asker, asked, (first, plan), now)
+        order.state = state.value
+        order.finished_at = now if state is State.RELEASED else None
         session.add(order)
         session.flush()
-        session.add(
-            Plan(
-                order_id=order.id,
-                revision=1,
-                engine_version=plan.engine_version,
-                inputs={**plan.inputs, "repeat_of": {"order": first.id, "revision": plan.revision}},
-                told=plan.told,
-                good_to_cut=plan.good_to_cut,
-                lost_share=plan.lost_share,
-                made_at=plan.made_at,
-                released_at=now if state is State.RELEASED else None,
-                released_by="asked for with the order" if state is State.RELEASED else None,
-            )
-        )
+        session.add(_plan_again(plan, first, order))
         _take_files_over(session, first, plan, order)
         data = {"reference": asked.reference, "repeat_of": first.id}
         add_event(session, order, EventType.RECEIVED, at=now, by=asker.title, data=data)
@@ -110,6 +73,60 @@ def repeat_order(store: Store, asker: Asker, asked: AskedRepeat, also: Also) -> 
         return view
 
     return store.again(repeating)
+
+
+def _released(session: Session, asker: Asker, order_id: str) -> tuple[Order, Plan]:
+    first = order_row(session, asker, order_id)
+    plan = session.get(Plan, (first.id, first.plan_revision))
+    if first.state != State.RELEASED or plan is None or first.erased_at is not None:
+        raise StateForbidsError(f"the order {first.id} is {first.state}; a released one alone can be repeated")
+    return first, plan
+
+
+def _state_of(plan: Plan, asked: AskedRepeat) -> State:
+    if plan.release_reason is not None:
+        return State.ATTENTION
+    return State.RELEASED if asked.release_alone else State.READY
+
+
+def _row(order_id: str, asker: Asker, asked: AskedRepeat, repeated: tuple[Order, Plan], now: datetime) -> Order:
+    first, plan = repeated
+    return Order(
+        id=order_id,
+        owner_id=asker.owner_id,
+        key_id=asker.key_id,
+        is_test=asker.is_test,
+        version=1,
+        reference=asked.reference,
+        quantity=asked.quantity,
+        most_lost_share=first.most_lost_share,
+        release_alone=asked.release_alone,
+        hook_id=asked.hook_id,
+        repeat_of=first.id,
+        plan_revision=1,
+        reason=_reason(plan),
+        created_at=now,
+        updated_at=now,
+        attempt=0,
+        killed=0,
+        **{name: getattr(first, name) for name in _TAKEN_OVER},
+    )
+
+
+def _plan_again(plan: Plan, first: Order, order: Order) -> Plan:
+    is_released = order.state == State.RELEASED
+    return Plan(
+        order_id=order.id,
+        revision=1,
+        engine_version=plan.engine_version,
+        inputs={**plan.inputs, "repeat_of": {"order": first.id, "revision": plan.revision}},
+        told=plan.told,
+        good_to_cut=plan.good_to_cut,
+        lost_share=plan.lost_share,
+        made_at=plan.made_at,
+        released_at=order.created_at if is_released else None,
+        released_by="asked for with the order" if is_released else None,
+    )
 
 
 def _reason(plan: Plan) -> str | None:

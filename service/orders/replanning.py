@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from layout.documents import read_settings
-from layout.read import read_score
+from layout.walk import check_tune
 from service.access.asker import Asker
 from service.orders.faults import InputRefusedError
 from service.orders.finding import order_row
@@ -48,7 +48,7 @@ def columns_of(store: Store, keeper: FileKeeper, asker: Asker, order_id: str, an
                     "/movement_revision", f"there is no revision {anew.movement_revision} of {movement_id}"
                 )
     if anew.settings is not None and tune_digest:
-        read_score(keeper.read(tune_digest), sequence=read_settings(anew.settings).sequence)
+        check_tune(keeper.read(tune_digest), read_settings(anew.settings))
     texts = {
         "movement_digest": None if movement is None else movement.text,
         "settings_digest": anew.settings,
