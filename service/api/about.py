@@ -5,6 +5,8 @@ from flask import Blueprint, Response, request
 from layout.version import ENGINE_VERSION
 from service.api.answers import document_response, json_response
 from service.api.asking import open_to_all
+from service.api.describing import describes
+from service.api.operations import about
 from service.limits import Limits
 
 ADDRESSES = {
@@ -28,6 +30,7 @@ def about_routes(limits: Limits) -> Blueprint:
     routes = Blueprint("about", __name__)
 
     @routes.get("/")
+    @describes(about.ADDRESSES)
     @open_to_all
     def tell_addresses() -> Response:
         return document_response(
@@ -35,11 +38,13 @@ def about_routes(limits: Limits) -> Blueprint:
         )
 
     @routes.get("/healthz")
+    @describes(about.HEALTH)
     @open_to_all
     def tell_health() -> Response:
         return json_response({"status": "ok", "engine_version": ENGINE_VERSION})
 
     @routes.get("/v1/limits")
+    @describes(about.LIMITS)
     @open_to_all
     def tell_limits() -> Response:
         told = [

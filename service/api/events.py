@@ -10,7 +10,9 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import json_response
 from service.api.asking import needs
+from service.api.describing import describes
 from service.api.models.orders import EventsQuery
+from service.api.operations import orders
 from service.api.order_answers import event_told, events_told
 from service.api.request_models import read_arguments
 from service.media_types import JSON_MEDIA_TYPE
@@ -33,6 +35,7 @@ def event_routes(parts: Parts) -> Blueprint:
     routes = Blueprint("events", __name__, url_prefix="/v1")
 
     @routes.get("/events")
+    @describes(orders.EVENTS)
     @needs(Scope.READ)
     def of_all(asker: Asker) -> Response:
         query = read_arguments(request, EventsQuery)
@@ -44,6 +47,7 @@ def event_routes(parts: Parts) -> Blueprint:
         return _answer(request, query.after, more)
 
     @routes.get("/orders/<order_id>/events")
+    @describes(orders.ORDER_EVENTS)
     @needs(Scope.READ)
     def of_one(asker: Asker, order_id: str) -> Response:
         query = read_arguments(request, EventsQuery)

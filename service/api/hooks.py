@@ -11,8 +11,10 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import document_response, json_response
 from service.api.asking import needs, open_to_all
+from service.api.describing import describes
 from service.api.hook_answers import delivery_told, hook_problems, hook_told, secret_told
 from service.api.models.hooks import DeliveriesQuery, HookBody, HookPatch, SecretBody
+from service.api.operations import hooks
 from service.api.request_models import read_arguments, read_body
 from service.hooks.deliveries import DeliveryTold, Holder, deliveries_of, find_delivery, redeliver
 from service.hooks.guard import Rules, UrlError, read_url
@@ -49,6 +51,7 @@ def hook_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepr
     _deliveries(routes, parts, clock)
 
     @routes.get("/event-types")
+    @describes(hooks.TYPES)
     @open_to_all
     def list_types() -> Response:
         types = [{"type": kind, "meaning": meaning} for kind, meaning in MEANINGS.items()]
@@ -61,6 +64,7 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
     store = parts.store
 
     @routes.get("/hooks")
+    @describes(hooks.LIST)
     @needs(Scope.READ)
     def list_hooks(asker: Asker) -> Response:
         with store.reading() as session:
@@ -68,6 +72,7 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
         return json_response({"hooks": [hook_told(hook) for hook in found]})
 
     @routes.post("/hooks")
+    @describes(hooks.MAKE)
     @needs(Scope.ORDER)
     def make_hook(asker: Asker) -> Response:
         body = read_body(request, HookBody, document="hook", most_bytes=MOST_BODY_BYTES)
@@ -81,12 +86,14 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
         return response
 
     @routes.get("/hooks/<hook_id>")
+    @describes(hooks.TELL)
     @needs(Scope.READ)
     def tell_hook(asker: Asker, hook_id: str) -> Response:
         with hook_problems(), store.reading() as session:
             return json_response(hook_told(find_hook(session, _holder(asker), hook_id, now=clock())))
 
     @routes.patch("/hooks/<hook_id>")
+    @describes(hooks.CHANGE)
     @needs(Scope.ORDER)
     def patch_hook(asker: Asker, hook_id: str) -> Response:
         body = read_body(request, HookPatch, document="hook", most_bytes=MOST_BODY_BYTES)
@@ -97,6 +104,7 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
             return json_response(hook_told(change_hook(session, _holder(asker), hook_id, changes, now=clock())))
 
     @routes.delete("/hooks/<hook_id>")
+    @describes(hooks.DELETE)
     @needs(Scope.ORDER)
     def drop_hook(asker: Asker, hook_id: str) -> Response:
         with hook_problems(), store.writing() as session:
@@ -108,6 +116,7 @@ def _secrets_and_tests(routes: Blueprint, parts: Parts, clock: Callable[[], date
     store = parts.store
 
     @routes.post("/hooks/<hook_id>/secret")
+    @describes(hooks.SECRET)
     @needs(Scope.ORDER)
     def replace_secret(asker: Asker, hook_id: str) -> Response:
         body = _secret_body(request)
@@ -117,12 +126,14 @@ def _secrets_and_tests(routes: Blueprint, parts: Parts, clock: Callable[[], date
         return _with_secret(made, status=200)
 
     @routes.post("/hooks/<hook_id>/test")
+    @describes(hooks.TEST)
     @needs(Scope.ORDER)
     def send_test(asker: Asker, hook_id: str) -> Response:
         with hook_problems(), store.writing() as session:
             return _accepted(ask_for_test(session, _holder(asker), hook_id, now=clock()))
 
     @routes.post("/hooks/<hook_id>/enable")
+    @describes(hooks.ENABLE)
     @needs(Scope.ORDER)
     def turn_on(asker: Asker, hook_id: str) -> Response:
         with hook_problems(), store.writing() as session:
@@ -133,6 +144,7 @@ def _deliveries(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) 
     store = parts.store
 
     @routes.get("/hooks/<hook_id>/deliveries")
+    @describes(hooks.DELIVERIES)
     @needs(Scope.READ)
     def list_deliveries(asker: Asker, hook_id: str) -> Response:
         page = read_arguments(request, DeliveriesQuery)
@@ -147,12 +159,14 @@ def _deliveries(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) 
         return response
 
     @routes.get("/deliveries/<delivery_id>")
+    @describes(hooks.DELIVERY)
     @needs(Scope.READ)
     def tell_delivery(asker: Asker, delivery_id: str) -> Response:
         with hook_problems(), store.reading() as session:
             return json_response(delivery_told(find_delivery(session, _holder(asker), delivery_id)))
 
     @routes.post("/deliveries/<delivery_id>/redeliver")
+    @describes(hooks.REDELIVER)
     @needs(Scope.ORDER)
     def send_again(asker: Asker, delivery_id: str) -> Response:
         with hook_problems(), store.writing() as session:

@@ -13,7 +13,9 @@ from service.access.scopes import Scope, in_order
 from service.access.telling import key_told
 from service.api.answers import json_response
 from service.api.asking import browser_or_none, needs, needs_any_key
+from service.api.describing import describes
 from service.api.models.keys import KeyBody, KeysQuery
+from service.api.operations import keys
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments, read_body
 from service.moments import utc_now
@@ -33,6 +35,7 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
     store = parts.store
 
     @routes.get("")
+    @describes(keys.LIST)
     @needs(Scope.ADMIN)
     def list_all(asker: Asker) -> Response:
         page = read_arguments(request, KeysQuery)
@@ -44,16 +47,17 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
         return response
 
     @routes.post("")
+    @describes(keys.MAKE)
     @needs(Scope.ADMIN)
     def make(asker: Asker) -> Response:
         body = read_body(request, KeyBody, document="key", most_bytes=MOST_BODY_BYTES)
         made = _made(parts, asker, body, clock())
         response = json_response({**key_told(made.told), "secret": made.secret}, status=201)
-        response.headers["Location"] = f"/v1/keys/{made.told.id}"
-        response.headers["Cache-Control"] = "no-store"
+        response.headers.update({"Location": f"/v1/keys/{made.told.id}", "Cache-Control": "no-store"})
         return response
 
     @routes.get("/me")
+    @describes(keys.OWN)
     @needs_any_key
     def tell_own(asker: Asker) -> Response:
         browser = browser_or_none()
@@ -61,14 +65,15 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
         return json_response({**key_told(own), "csrf_token": browser.csrf_token if browser else None})
 
     @routes.get("/<key_id>")
+    @describes(keys.TELL)
     @needs(Scope.ADMIN)
     def tell(asker: Asker, key_id: str) -> Response:
         key = key_of_id(store, key_id)
-        owner_id = _seen_by(asker)
-        is_seen = key is not None and owner_id in (None, key.owner.id)
+        is_seen = key is not None and _seen_by(asker) in (None, key.owner.id)
         return json_response(key_told(_found(key if is_seen else None, key_id)))
 
     @routes.delete("/<key_id>")
+    @describes(keys.REVOKE)
     @needs(Scope.ADMIN)
     def revoke(asker: Asker, key_id: str) -> Response:
         _found(revoke_key(store, key_id, clock(), owner_id=_seen_by(asker)), key_id)

@@ -15,11 +15,14 @@ from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import open_on_loopback
+from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.layout_cache import KeptLayout
-from service.api.parameters import read_query
+from service.api.models.layouts import DespiteQuery, LayoutQuery
+from service.api.operations import layouts
 from service.api.posted import read_posted
 from service.api.problems import ProblemError
+from service.api.request_models import read_arguments
 from service.download_names import ALL_FILES, NamedDisc, content_disposition, download_name
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES
@@ -46,33 +49,32 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
     routes = Blueprint("layouts", __name__, url_prefix="/v1/layouts")
     teller = LayoutTeller(desk, limits)
 
-    def reason_asked(*known: str) -> str | None:
-        return read_query(request.args, known=known, most_reason_characters=limits.reason_characters).reason
+    def reason_asked() -> str | None:
+        return read_arguments(request, DespiteQuery).despite_findings
 
     @routes.post("")
+    @describes(layouts.MAKE)
     @open_on_loopback(Scope.ORDER)
     def make_layout() -> Response:
         _answer_wanted(request, 1)  # what is acceptable in no case is refused before anything is read
-        query = read_query(
-            request.args,
-            known=("movement", "cutter", "despite_findings"),
-            most_reason_characters=limits.reason_characters,
-        )
+        query = read_arguments(request, LayoutQuery)
         inputs = read_posted(request, query, limits)
         file_name = _answer_wanted(request, inputs.read().settings.discs)
-        response = teller.made(desk.lay_out_discs(inputs), file_name, query.reason)
+        response = teller.made(desk.lay_out_discs(inputs), file_name, query.despite_findings)
         response.vary.add("Accept")
         return response
 
     @routes.get("/<fingerprint>")
+    @describes(layouts.TELL)
     @open_on_loopback(Scope.ORDER)
     def tell_layout(fingerprint: str) -> Response:
         kept = _found(desk, fingerprint)
-        response = teller.layout(kept, reason_asked("despite_findings"))
+        response = teller.layout(kept, reason_asked())
         response.make_conditional(request)
         return response
 
     @routes.get("/<fingerprint>/<file_name>")
+    @describes(layouts.FILE)
     @open_on_loopback(Scope.ORDER)
     def give_file(fingerprint: str, file_name: str) -> Response:
         if file_name not in FILES:
@@ -81,7 +83,7 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
         cutter = kept.inputs.read().cutter
         if file_name not in files_for(cutter):
             raise _no_such_file(file_name, f"a layout for {cutter.id}, a {cutter.kind},", files_for(cutter))
-        response = teller.file(kept, file_name, reason_asked("despite_findings"))
+        response = teller.file(kept, file_name, reason_asked())
         response.make_conditional(request)
         return response
 

@@ -6,17 +6,20 @@ from typing import Any, TypeVar
 from flask import Blueprint, Request, Response, request, url_for
 
 from layout.documents import read_settings
-from layout.documents.reading import Part, check_document, read_json
+from layout.documents.reading import Part
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import json_bytes, json_response
 from service.api.asking import needs
+from service.api.describing import describes
 from service.api.models.orders import CancelBody, ReleaseBody, ReplanBody, ReportBody
 from service.api.once import once
+from service.api.operations import orders
 from service.api.order_answers import order_given
 from service.api.orders import Send
 from service.api.posted import body_of
 from service.api.problems import ProblemError
+from service.api.request_models import read_text
 from service.orders.deciding import Release, Seen, cancel_order, release_order, replan_order, report_on_order
 from service.orders.finding import find_order
 from service.orders.placing import Also
@@ -42,26 +45,31 @@ def decision_routes(parts: Parts, send: Send, links: ProofLinks) -> Blueprint:
     desk = _Decisions(parts, send)
 
     @routes.post("/release")
+    @describes(orders.RELEASE)
     @needs(Scope.RELEASE)
     def release(asker: Asker, order_id: str) -> Response:
         return desk.release(asker, order_id)
 
     @routes.post("/replan")
+    @describes(orders.REPLAN)
     @needs(Scope.ORDER)
     def replan(asker: Asker, order_id: str) -> Response:
         return desk.replan(asker, order_id)
 
     @routes.post("/cancel")
+    @describes(orders.CANCEL)
     @needs(Scope.ORDER)
     def cancel(asker: Asker, order_id: str) -> Response:
         return desk.cancel(asker, order_id)
 
     @routes.post("/reports")
+    @describes(orders.REPORT)
     @needs(Scope.RELEASE)
     def report(asker: Asker, order_id: str) -> Response:
         return desk.report(asker, order_id)
 
     @routes.post("/proof-links")
+    @describes(orders.PROOF_LINK)
     @needs(Scope.ORDER)
     def link(asker: Asker, order_id: str) -> Response:
         with parts.store.reading() as session:
@@ -147,8 +155,7 @@ class _Decisions:
 
     def _body(self, model: type[ModelT], document: str) -> tuple[bytes, ModelT]:
         text = body_of(request, self._parts.settings.limits.document_bytes)
-        value, _ = read_json(text or b"{}", document=document)
-        return text, check_document(model, value, document=document)
+        return text, read_text(request, model, text, document=document)
 
 
 def _seen(order_id: str) -> Seen:

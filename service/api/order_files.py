@@ -6,14 +6,16 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES
 from service.api.asking import needs
+from service.api.describing import describes
+from service.api.models.orders import FileQuery
+from service.api.operations import orders
 from service.api.order_answers import order_address
 from service.api.problems import ProblemError
+from service.api.request_models import read_arguments
 from service.api.serving import Served, served
 from service.orders.finding import find_order
 from service.orders.views import FileView, PlanView, plan_view
 from service.parts import Parts
-
-SUPERSEDED = "superseded"  # the parameter by which a file of a superseded plan is asked for all the same
 
 
 def order_file_routes(parts: Parts) -> Blueprint:
@@ -21,13 +23,15 @@ def order_file_routes(parts: Parts) -> Blueprint:
     routes = Blueprint("order_files", __name__, url_prefix="/v1/orders/<order_id>/plans")
 
     @routes.get("/<int:revision>/files/<int:disc>/<name>")
+    @describes(orders.FILE)
     @needs(Scope.READ)
     def give(asker: Asker, order_id: str, revision: int, disc: int, name: str) -> Response:
+        asked = read_arguments(request, FileQuery)
         with parts.store.reading() as session:
             order = find_order(session, asker, order_id)
             plan = plan_view(session, order.id, revision)
         file = file_of(plan, disc, name)
-        _check_given(plan, file, request)
+        _check_given(plan, file, asked)
         response = file_response(parts, file, request)
         if plan is not None and plan.superseded_at is not None:
             response.headers["Link"] = f'<{order_address(order_id)}>; rel="latest-version"'  # RFC 5829
@@ -74,7 +78,7 @@ def file_response(parts: Parts, file: FileView, asked: Request) -> Response:
     return response
 
 
-def _check_given(plan: PlanView | None, file: FileView, asked: Request) -> None:
+def _check_given(plan: PlanView | None, file: FileView, asked: FileQuery) -> None:
     if plan is None or not file.is_for_cutting:
         return
     if plan.released_at is None:
@@ -82,9 +86,9 @@ def _check_given(plan: PlanView | None, file: FileView, asked: Request) -> None:
             name="not-released",
             detail=f"{file.name} is for cutting, and the plan is not released; previews may be had before",
         )
-    if plan.superseded_at is not None and asked.args.get(SUPERSEDED) != "yes":
+    if plan.superseded_at is not None and asked.superseded != "yes":
         raise ProblemError(
             name="plan-superseded",
             detail=f"plan {plan.revision} is superseded and not to be cut any more; "
-            f"ask with {SUPERSEDED}=yes to see the file all the same",
+            "ask with superseded=yes to see the file all the same",
         )

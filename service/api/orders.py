@@ -8,21 +8,23 @@ from urllib.parse import urlencode
 from flask import Blueprint, Request, Response, request
 
 from layout.documents import shipped_cutter_ids
-from layout.documents.reading import Json, check_document, read_json
+from layout.documents.reading import Json
 from layout.errors import DocumentError, Problem
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import json_bytes, json_response
 from service.api.asking import needs
 from service.api.cursors import Cursors
+from service.api.describing import describes
 from service.api.models.orders import MOST_WAIT_S, DocumentName, OrderBody, OrdersQuery
 from service.api.multipart import parts_of
 from service.api.once import once
+from service.api.operations import orders
 from service.api.order_answers import order_given, order_tag, order_told
 from service.api.posted import FORM_MEDIA_TYPE, body_of
 from service.api.preferring import wait_asked
 from service.api.problems import ProblemError
-from service.api.request_models import read_arguments
+from service.api.request_models import read_arguments, read_text
 from service.orders.asked import AskedOrder, AskedRepeat, NamedDocument
 from service.orders.erasing import erase_order
 from service.orders.finding import Sought, find_order, list_orders
@@ -52,31 +54,19 @@ def order_routes(parts: Parts, send: Send) -> Blueprint:
     cursors = Cursors(parts.secret_for("cursor"))
 
     @routes.post("")
+    @describes(orders.PLACE)
     @needs(Scope.ORDER)
     def place(asker: Asker) -> Response:
         return desk.place(asker, request)
 
     @routes.get("")
+    @describes(orders.LIST)
     @needs(Scope.READ)
     def list_all(asker: Asker) -> Response:
-        query = read_arguments(request, OrdersQuery)
-        after = None if query.after is None else cursors.read(query.after)
-        sought = Sought(
-            state=query.state,
-            reference=query.reference,
-            updated_since=query.updated_since,
-            run_id=query.run,
-            test=query.test,
-        )
-        with parts.store.reading() as session:
-            orders, more = list_orders(session, asker, sought, after=after, most=query.limit)
-        response = json_response({"orders": [order_told(order) for order in orders]})
-        if more is not None:
-            asked = {**request.args.to_dict(), "after": cursors.make(more)}
-            response.headers["Link"] = f'</v1/orders?{urlencode(asked)}>; rel="next"'  # RFC 8288
-        return response
+        return _page(parts, cursors, asker, request)
 
     @routes.get("/<order_id>")
+    @describes(orders.TELL)
     @needs(Scope.READ)
     def tell(asker: Asker, order_id: str) -> Response:
         order, waited = desk.found(asker, order_id, request)
@@ -88,12 +78,32 @@ def order_routes(parts: Parts, send: Send) -> Blueprint:
         return response
 
     @routes.delete("/<order_id>")
+    @describes(orders.ERASE)
     @needs(Scope.ORDER)
     def erase(asker: Asker, order_id: str) -> Response:
         order = erase_order(parts.store, parts.settings.places.data_directory, asker, order_id)
         return json_response(order_told(order))
 
     return routes
+
+
+def _page(parts: Parts, cursors: Cursors, asker: Asker, asked: Request) -> Response:
+    query = read_arguments(asked, OrdersQuery)
+    after = None if query.after is None else cursors.read(query.after)
+    sought = Sought(
+        state=query.state,
+        reference=query.reference,
+        updated_since=query.updated_since,
+        run_id=query.run,
+        test=query.test,
+    )
+    with parts.store.reading() as session:
+        orders, more = list_orders(session, asker, sought, after=after, most=query.limit)
+    response = json_response({"orders": [order_told(order) for order in orders]})
+    if more is not None:
+        on = {**asked.args.to_dict(), "after": cursors.make(more)}
+        response.headers["Link"] = f'</v1/orders?{urlencode(on)}>; rel="next"'  # RFC 8288
+    return response
 
 
 class _OrderDesk:
@@ -111,7 +121,7 @@ class _OrderDesk:
             ProblemError, LayoutError, OrderFault: Something of it cannot be taken; nothing is ordered.
         """
         brought = self._brought(asked)
-        body = _order_body(brought)
+        body = _order_body(asked, brought)
         if body.release_alone and Scope.RELEASE not in asker.scopes:
             raise ProblemError(
                 name="scope-missing",
@@ -172,14 +182,14 @@ class _OrderDesk:
             time.sleep(LOOKS_EVERY_S)
 
 
-def _order_body(brought: Mapping[str, bytes]) -> OrderBody:
-    value, stated = read_json(brought.get("order", b"{}"), document="order")
-    if stated:
-        message = "a plain value is needed; a document with the worth of its numbers goes along as a part of its own"
-        raise DocumentError(
-            document="order", problems=tuple(Problem(pointer=place, message=message) for place in stated)
-        )
-    return check_document(OrderBody, value, document="order")
+def _order_body(asked: Request, brought: Mapping[str, bytes]) -> OrderBody:
+    return read_text(
+        asked,
+        OrderBody,
+        brought.get("order", b""),
+        document="order",
+        plain="a plain value is needed; a document with the worth of its numbers goes along as a part of its own",
+    )
 
 
 def _repeat_of(body: OrderBody, brought: Mapping[str, bytes]) -> AskedRepeat:

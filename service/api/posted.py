@@ -4,8 +4,8 @@ from flask import Request
 
 from layout.documents import shipped_movement_ids
 from service.api.failures import too_large
+from service.api.models.layouts import LayoutQuery
 from service.api.multipart import parts_of
-from service.api.parameters import Query
 from service.api.problems import ProblemError
 from service.documents import Inputs, Shipped, Source, Written, default_cutter
 from service.limits import Limits
@@ -17,7 +17,7 @@ MEDIA_TYPES = (*TUNE_MEDIA_TYPES, FORM_MEDIA_TYPE)
 DOCUMENT_PARTS = ("settings", "movement", "cutter")
 
 
-def read_posted(request: Request, query: Query, limits: Limits) -> Inputs:
+def read_posted(request: Request, query: LayoutQuery, limits: Limits) -> Inputs:
     """The inputs of a layout, as a request brings them.
 
     Args:

@@ -4,6 +4,8 @@ from flask import Blueprint, Response, request
 
 from service.api.answers import document_response
 from service.api.asking import open_to_all
+from service.api.describing import describes
+from service.api.operations import about
 from service.api.problem_kinds import ProblemKind
 from service.api.problems import PROBLEMS, ProblemError
 
@@ -13,11 +15,13 @@ def problem_pages() -> Blueprint:
     pages = Blueprint("problems", __name__, url_prefix="/problems")
 
     @pages.get("")
+    @describes(about.PROBLEM_KINDS)
     @open_to_all
     def list_kinds() -> Response:
         return document_response({"problems": [_told(kind) for kind in PROBLEMS.values()]}, request)
 
     @pages.get("/<name>")
+    @describes(about.PROBLEM_KIND)
     @open_to_all
     def tell_kind(name: str) -> Response:
         if name not in PROBLEMS:
@@ -32,4 +36,10 @@ def problem_pages() -> Blueprint:
 
 
 def _told(kind: ProblemKind) -> dict[str, object]:
-    return {"type": kind.type, "title": kind.title, "status": kind.status, "what_to_do": kind.what_to_do}
+    return {
+        "type": kind.type,
+        "title": kind.title,
+        "status": kind.status,
+        "what_to_do": kind.what_to_do,
+        "try_again": kind.try_again,
+    }

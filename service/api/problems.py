@@ -6,14 +6,20 @@ from typing import Any
 
 from flask import Response
 
-from service.api import hook_problem_kinds, order_problem_kinds, problem_kinds
+from service.api import document_problem_kinds, hook_problem_kinds, order_problem_kinds, problem_kinds
 from service.api.answers import json_bytes
 from service.api.problem_kinds import ProblemKind
+from service.api.request_ids import request_id
 
 PROBLEM_MEDIA_TYPE = "application/problem+json"
 
 
-_ALL = (*problem_kinds.KINDS, *order_problem_kinds.KINDS, *hook_problem_kinds.KINDS)
+_ALL = (
+    *problem_kinds.KINDS,
+    *order_problem_kinds.KINDS,
+    *document_problem_kinds.KINDS,
+    *hook_problem_kinds.KINDS,
+)
 PROBLEMS: Mapping[str, ProblemKind] = {kind.name: kind for kind in _ALL}
 
 
@@ -51,6 +57,7 @@ def problem_response(problem: ProblemError, *, instance: str) -> Response:
         "status": kind.status,
         "detail": problem.detail,
         "instance": instance,
+        "request_id": request_id(),
         "try_again": kind.try_again,
         **problem.more,
     }

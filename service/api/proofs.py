@@ -2,13 +2,15 @@
 
 from flask import Blueprint, Response, request
 
-from layout.documents.reading import check_document, read_json
 from service.api.answers import json_response
 from service.api.asking import open_but_counted
+from service.api.describing import describes
 from service.api.models.proofs import VerdictBody
+from service.api.operations import proofs
 from service.api.order_files import file_of, file_response
 from service.api.posted import body_of
 from service.api.problems import ProblemError
+from service.api.request_models import read_text
 from service.orders.deciding import customer_says
 from service.orders.faults import OrderUnknownError
 from service.orders.proofs import Proof, ProofLinks, ProofRefusedError
@@ -25,6 +27,7 @@ def proof_routes(parts: Parts, links: ProofLinks) -> Blueprint:
     routes = Blueprint("proofs", __name__, url_prefix="/v1/proofs")
 
     @routes.get("/<text>")
+    @describes(proofs.SHOW)
     @open_but_counted
     def show(text: str) -> Response:
         proof = _proof(links, text)
@@ -50,6 +53,7 @@ def proof_routes(parts: Parts, links: ProofLinks) -> Blueprint:
         )
 
     @routes.get("/<text>/files/<int:disc>/<name>")
+    @describes(proofs.FILE)
     @open_but_counted
     def give(text: str, disc: int, name: str) -> Response:
         _, plan = _shown(parts, _proof(links, text))
@@ -58,19 +62,16 @@ def proof_routes(parts: Parts, links: ProofLinks) -> Blueprint:
         return file_response(parts, file_of(plan, disc, name), request)
 
     @routes.post("/<text>/verdict")
+    @describes(proofs.VERDICT)
     @open_but_counted
     def say(text: str) -> Response:
         proof = _proof(links, text)
-        body = _read(VerdictBody, body_of(request, parts.settings.limits.document_bytes))
+        text_said = body_of(request, parts.settings.limits.document_bytes)
+        body = read_text(request, VerdictBody, text_said, document="verdict")
         customer_says(parts.store, proof.order_id, proof.revision, body.verdict, by=body.by, note=body.note)
         return json_response({"verdict": body.verdict, "revision": proof.revision})
 
     return routes
-
-
-def _read(model: type[VerdictBody], text: bytes) -> VerdictBody:
-    value, _ = read_json(text or b"{}", document="verdict")
-    return check_document(model, value, document="verdict")
 
 
 def _proof(links: ProofLinks, text: str) -> Proof:

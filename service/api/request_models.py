@@ -7,11 +7,13 @@ from pydantic import ValidationError
 
 from layout.documents.reading import Part, check_document, read_json
 from layout.errors import DocumentError, Problem
+from service.api.describing import operation_asked
 from service.api.failures import too_large
 from service.api.problems import ProblemError
 from service.media_types import JSON_MEDIA_TYPE
 
 ModelT = TypeVar("ModelT", bound=Part)
+PLAIN = "a plain value is needed, got an object"
 
 
 def read_body(asked: Request, model: type[ModelT], *, document: str, most_bytes: int) -> ModelT:
@@ -37,9 +39,28 @@ def read_body(asked: Request, model: type[ModelT], *, document: str, most_bytes:
     body = asked.stream.read(most_bytes + 1)
     if len(body) > most_bytes:
         raise too_large(most_bytes, f"the {document}")
-    value, stated = read_json(body, document=document)
-    if stated:  # the worth of a measured number; there are none here
-        faults = tuple(Problem(pointer=place, message="a plain value is needed, got an object") for place in stated)
+    return read_text(asked, model, body, document=document)
+
+
+def read_text(asked: Request, model: type[ModelT], text: bytes, *, document: str, plain: str = PLAIN) -> ModelT:
+    """The JSON text of a body or a part, checked.
+
+    Args:
+        asked: The request that brought it.
+        model: What it must be.
+        text: As it came; nothing is an object without members.
+        document: Word for it in messages.
+        plain: What is said of a number with its worth, which no request takes.
+
+    Raises:
+        DocumentError: It is not valid; each fault with its JSON pointer.
+    """
+    operation = operation_asked(asked)
+    if operation is not None and model not in operation.checked_by:
+        raise LookupError(f"{operation.id} is not described as bringing {model.__name__}")
+    value, stated = read_json(text or b"{}", document=document)
+    if stated:
+        faults = tuple(Problem(pointer=place, message=plain) for place in stated)
         raise DocumentError(document=document, problems=faults)
     return check_document(model, value, document=document)
 
@@ -50,10 +71,13 @@ def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
     Raises:
         ProblemError: A parameter is unknown, comes twice, or has a value that is not allowed.
     """
-    known = ", ".join(model.model_fields)
+    operation = operation_asked(asked)
+    if operation is not None and operation.query is not model:
+        raise LookupError(f"{operation.id} is not described as asking by {model.__name__}")
+    known = f"known are {', '.join(model.model_fields)}" if model.model_fields else "none are taken"
     for name, values in asked.args.lists():
         if name not in model.model_fields:
-            raise _invalid(name, f"there is no parameter called {name[:100]!r} here; known are {known}")
+            raise _invalid(name, f"there is no parameter called {name[:100]!r} here; {known}")
         if len(values) > 1:
             raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
     try:

@@ -15,10 +15,13 @@ from layout.sheets.plan import SheetPlan
 from service.access.scopes import Scope
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import open_on_loopback
+from service.api.describing import describes
 from service.api.failures import too_large
+from service.api.models.layouts import NoQuery
 from service.api.multipart import parts_of
-from service.api.parameters import read_query
+from service.api.operations import layouts
 from service.api.problems import ProblemError
+from service.api.request_models import read_arguments
 from service.download_names import slug
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE
@@ -50,10 +53,11 @@ def sheet_routes(limits: Limits) -> Blueprint:
     routes = Blueprint("sheets", __name__, url_prefix="/v1/sheets")
 
     @routes.post("")
+    @describes(layouts.SHEETS)
     @open_on_loopback(Scope.ORDER)
     def make_sheets() -> Response:
         media_type = _answer_wanted(request)
-        read_query(request.args, known=(), most_reason_characters=limits.reason_characters)
+        read_arguments(request, NoQuery)
         posted = _posted(request, limits)
         plan = plan_sheets(read_sheet_job(posted.job), posted.drawings)
         files = sheet_files_of(plan)

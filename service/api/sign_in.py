@@ -3,12 +3,14 @@
 from collections.abc import Callable
 from datetime import datetime, timedelta
 
-from flask import Blueprint, Response, request
+from flask import Blueprint, Request, Response, request
 
 from service.access.asker import Asker
 from service.access.browsers import SignedIn, sign_in_as, sign_in_by_link, sign_out
 from service.access.keys import find_key
 from service.api.asking import needs_any_key, open_but_counted
+from service.api.describing import describes
+from service.api.operations import keys
 from service.api.own_pages import FORM_MEDIA_TYPE, clear_cookie, cookie_of, from_elsewhere, set_cookie
 from service.api.problems import ProblemError
 from service.moments import utc_now
@@ -34,6 +36,7 @@ def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blu
         return response
 
     @routes.get("/sign-in/<secret>")
+    @describes(keys.SIGN_IN_BY_LINK)
     @open_but_counted
     def use_link(secret: str) -> Response:
         # Whoever only looks ahead, as browsers and mail programs do, must not use the link up.
@@ -48,25 +51,16 @@ def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blu
         return first_page(signed_in)
 
     @routes.post("/sign-in")
+    @describes(keys.SIGN_IN)
     @open_but_counted
     def sign_in() -> Response:
-        elsewhere = from_elsewhere(request, public_url)
-        if elsewhere is not None:  # another site must not sign a person in as somebody else
-            raise ProblemError(name="write-not-vouched", detail=elsewhere)
-        if request.mimetype != FORM_MEDIA_TYPE:
-            raise ProblemError(
-                name="media-type-unsupported",
-                detail=f"{request.mimetype[:100] or 'a body without a media type'!r} is not taken; "
-                f"send the field key as {FORM_MEDIA_TYPE}",
-                more={"allowed_types": [FORM_MEDIA_TYPE]},
-                headers={"Accept-Post": FORM_MEDIA_TYPE},
-            )
-        key = find_key(store, request.form.get("key", "").strip())
+        key = find_key(store, _key_posted(request, public_url))
         if key is None:
             raise ProblemError(name="sign-in-refused", detail="the field key holds no key that is in force")
         return first_page(sign_in_as(store, key, clock(), lasts))
 
     @routes.post("/sign-out")
+    @describes(keys.SIGN_OUT)
     @needs_any_key
     def leave(_: Asker) -> Response:
         cookie = cookie_of(request, public_url)
@@ -77,6 +71,26 @@ def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blu
         return response
 
     return routes
+
+
+def _key_posted(asked: Request, public_url: str | None) -> str:
+    """What the field `key` of a form holds; "" where there is none.
+
+    Raises:
+        ProblemError: The body is no form, or comes from another site, which must not sign a person in as somebody else.
+    """
+    elsewhere = from_elsewhere(asked, public_url)
+    if elsewhere is not None:
+        raise ProblemError(name="write-not-vouched", detail=elsewhere)
+    if asked.mimetype != FORM_MEDIA_TYPE:
+        raise ProblemError(
+            name="media-type-unsupported",
+            detail=f"{asked.mimetype[:100] or 'a body without a media type'!r} is not taken; "
+            f"send the field key as {FORM_MEDIA_TYPE}",
+            more={"allowed_types": [FORM_MEDIA_TYPE]},
+            headers={"Accept-Post": FORM_MEDIA_TYPE},
+        )
+    return asked.form.get("key", "").strip()
 
 
 def _led_on() -> Response:

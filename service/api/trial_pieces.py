@@ -12,11 +12,14 @@ from service.access.scopes import Scope
 from service.api.answers import json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import open_on_loopback
+from service.api.describing import describes
 from service.api.failures import too_large
+from service.api.models.layouts import TrialPieceQuery
 from service.api.multipart import parts_of
-from service.api.parameters import Query, read_query
+from service.api.operations import layouts
 from service.api.posted import source_of
 from service.api.problems import ProblemError
+from service.api.request_models import read_arguments
 from service.documents import cutter_from, default_cutter, movement_from
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE
@@ -52,10 +55,11 @@ def trial_piece_routes(limits: Limits, make: TrialMaker = trial_files) -> Bluepr
     routes = Blueprint("trial_pieces", __name__, url_prefix="/v1/trial-pieces")
 
     @routes.post("")
+    @describes(layouts.TRIAL_PIECE)
     @open_on_loopback(Scope.ORDER)
     def make_trial_piece() -> Response:
         file_name = _answer_wanted(request)  # what is not acceptable is refused before anything is read
-        query = read_query(request.args, known=DOCUMENT_PARTS, most_reason_characters=limits.reason_characters)
+        query = read_arguments(request, TrialPieceQuery)
         asked = _read(request, query, limits)
         response = _answer(asked, make(asked.movement, asked.cutter), file_name)
         response.vary.add("Accept")
@@ -98,7 +102,7 @@ def _answer_wanted(asked: Request) -> str:
     return ANSWERS[best]
 
 
-def _read(asked: Request, query: Query, limits: Limits) -> _Asked:
+def _read(asked: Request, query: TrialPieceQuery, limits: Limits) -> _Asked:
     """The documents that a request names or brings.
 
     Raises:

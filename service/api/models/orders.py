@@ -86,6 +86,14 @@ class EventsQuery(Part):
     test: bool = Field(default=False, description="events of orders for tests, in place of the others")
 
 
+class FileQuery(Part):
+    """How a file of a plan is asked for."""
+
+    superseded: Literal["yes"] | None = Field(
+        default=None, description="yes: also where the plan is superseded and not to be cut any more"
+    )
+
+
 class ReleaseBody(Part):
     """Who releases an order, and why despite what stands."""
 

@@ -1,6 +1,6 @@
 """What a customer says about a proof."""
 
-from typing import Annotated, Literal
+from typing import Annotated, Any, Literal
 
 from pydantic import Field
 
@@ -14,3 +14,38 @@ class VerdictBody(Part):
     verdict: Literal["accepted", "declined"]
     by: OneLine = Field(description="who says so", examples=["B. Client"])
     note: Annotated[str, Field(max_length=500)] | None = Field(default=None, description="what is said beside")
+
+
+class ProofLinkAnswer(Part):
+    """A link to a proof."""
+
+    href: str = Field(description="to be handed to the customer")
+    revision: int = Field(description="of the plan it shows")
+
+
+class ProofDiscAnswer(Part):
+    """A disc as a proof shows it."""
+
+    number: int
+    of: int
+    asked_count: int = Field(description="notes that the tune asks for")
+    kept_count: int = Field(description="notes that the disc plays")
+    files: dict[str, str]
+
+
+class ProofAnswer(Part):
+    """What a proof shows."""
+
+    reference: str | None
+    title: str
+    movement: dict[str, Any]
+    revision: int
+    waits_for_decision: bool
+    discs: list[ProofDiscAnswer]
+
+
+class VerdictAnswer(Part):
+    """What a customer said."""
+
+    verdict: str
+    revision: int

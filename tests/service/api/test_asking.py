@@ -85,7 +85,7 @@ def test_a_key_that_never_was_and_one_that_was_revoked_are_answered_alike(parts:
     revoke_key(parts.store, revoked.told.id, NOW)
 
     answers = [
-        http.get("/read", headers={"Authorization": shown})
+        http.get("/read", headers={"Authorization": shown, "Request-Id": "the-same"})
         for shown in (
             f"Bearer {revoked.secret}",
             f"Bearer {new_key_secret()}",

@@ -337,10 +337,11 @@ def test_a_repeat_gives_the_stored_files_again_without_planning(shop: Shop) -> N
 def test_an_order_of_another_answers_as_one_that_never_was(shop: Shop) -> None:
     order_id = shop.ready()
     never = "order_" + "0" * 32
+    asking = {**shop.other, "Request-Id": "the-same"}
 
     for path in ("", "/events", "/plans/1/files/1/disc.svg"):
-        mine = shop.http.get(f"/v1/orders/{order_id}{path}", headers=shop.other)
-        nobodys = shop.http.get(f"/v1/orders/{never}{path}", headers=shop.other)
+        mine = shop.http.get(f"/v1/orders/{order_id}{path}", headers=asking)
+        nobodys = shop.http.get(f"/v1/orders/{never}{path}", headers=asking)
         assert mine.status_code == nobodys.status_code == 404
         assert mine.get_data(as_text=True).replace(order_id, never) == nobodys.get_data(as_text=True)
     for what in ("cancel", "replan", "proof-links"):

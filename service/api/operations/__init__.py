@@ -1,0 +1,1 @@
+"""The operations of the API, as its document describes them: one module for each group."""
