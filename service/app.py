@@ -60,18 +60,19 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
     app.config["MAX_CONTENT_LENGTH"] = settings.limits.upload_bytes + 1  # one more, to see that it is too large
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    for routes in (*_routes_of_layouts(planner, settings), *_routes_of_orders(parts, queue)):
+    for routes in (*_routes_of_layouts(planner, parts), *_routes_of_orders(parts, queue)):
         app.register_blueprint(routes)
     app.after_request(with_safe_head)
     return app
 
 
-def _routes_of_layouts(planner: AnyPlanner, settings: ServiceSettings) -> Iterator[Blueprint]:
+def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]:
     """What is computed at once and kept for a while."""
+    settings = parts.settings
     yield layout_routes(LayoutDesk(planner, LayoutCache(settings)), settings.limits)
     yield trial_piece_routes(settings.limits)
     yield sheet_routes(settings.limits)
-    yield catalogue_routes()
+    yield catalogue_routes(parts)
     yield about_routes(settings.limits)
     yield problem_pages()
 

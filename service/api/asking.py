@@ -46,11 +46,13 @@ class Access:
         scope: What a key must be allowed; None where any key will do.
         openness: Who may come without a key.
         is_counted: Whether requests count against a rate.
+        sees_more: Whether, of a route open to all, a key shows more than nobody sees; one shown must then be allowed.
     """
 
     scope: Scope | None
     openness: Openness = Openness.NOBODY
     is_counted: bool = True
+    sees_more: bool = False
 
 
 def needs(scope: Scope) -> Callable[[Callable[..., Any]], Callable[..., Any]]:
@@ -82,6 +84,14 @@ def open_to_all(view: View) -> View:
 def open_but_counted(view: View) -> View:
     """Declare that a view is for all, each address as often as the rates say."""
     return _declared(Access(scope=None, openness=Openness.ALL))(view)
+
+
+def open_and_more_with(scope: Scope) -> Callable[[View], View]:
+    """Declare that a view is for all, each address as often as the rates say, and that a key with a scope sees more.
+
+    The view gets no argument; `asker_or_none` tells who asks. A key that is shown and lacks the scope is refused.
+    """
+    return _declared(Access(scope=scope, openness=Openness.ALL, sees_more=True))
 
 
 def access_of(view: Callable[..., Any]) -> Access | None:
@@ -149,15 +159,15 @@ class _Gate:
             raise ProblemError(name="internal-error", detail="the service failed; its log holds more")
         for name in ("asker", "browser", "count"):  # of a request before in the same context
             g.pop(name, None)
-        g.by_key = access.openness is Openness.NOBODY
-        if access.openness is Openness.ALL:
+        g.by_key = access.openness is Openness.NOBODY or access.sees_more
+        if access.openness is Openness.ALL and not access.sees_more:
             if access.is_counted:
                 self._count(asked, of_address(asked.remote_addr))
             return
         key = self._key_shown(asked, access)
         if key is None:
             self._count(asked, of_address(asked.remote_addr))
-            if access.openness is Openness.ON_LOOPBACK and self._is_open_to(asked):
+            if access.sees_more or (access.openness is Openness.ON_LOOPBACK and self._is_open_to(asked)):
                 return
             raise _key_missing(has_cookie=cookie_of(asked, self._public_url) is not None)
         self._count(asked, key.asker.key_id)

@@ -32,6 +32,7 @@ def test_the_movements_are_listed_with_what_a_choice_needs(client: Client) -> No
         "thickness_mm": 0.5,
         "material": "cold-rolled steel",
         "projection": "standing",
+        "kept_by": "shipped",
     }
 
 
