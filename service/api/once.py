@@ -7,8 +7,10 @@ taken too. What a request brings is compared by the digests of its parts, since 
 import hashlib
 import re
 from collections.abc import Callable, Mapping
+from typing import TypeVar
 
 from flask import Request, Response
+from sqlalchemy.orm import Session
 
 from service.access.asker import Asker
 from service.api.problems import ProblemError
@@ -22,13 +24,14 @@ from service.orders.kept_answers import (
     give_up,
     keep_answer,
 )
-from service.orders.placing import Also, nothing_more
-from service.orders.views import OrderView
+from service.orders.placing import nothing_more
 from service.parts import Parts
 
 FIELD = "Idempotency-Key"
 KEY = re.compile(r'"([\x20\x21\x23-\x5b\x5d-\x7e]{1,255})"|([\x21\x23-\x5b\x5d-\x7e]{1,255})')
 RETRY_AFTER_S = 1  # s; a request is answered within that, or a little later
+
+Done = TypeVar("Done")  # what the work gives, such as an order
 
 
 def once(
@@ -36,10 +39,10 @@ def once(
     asked: Request,
     asker: Asker,
     brought: Mapping[str, bytes],
-    work: Callable[[Also], OrderView],
-    answer: Callable[[OrderView], Given],
+    work: Callable[[Callable[[Session, Done], None]], Done],
+    answer: Callable[[Done], Given],
 ) -> Response:
-    """The answer to a request about an order, its work done once for its key.
+    """The answer to a request, its work done once for its key.
 
     Args:
         parts: Read for the database and how long answers are kept.
@@ -47,7 +50,7 @@ def once(
         asker: Who asks.
         brought: The parts of the request by name.
         work: Does the work; what it is handed is written in the same transaction.
-        answer: The answer to give for the order.
+        answer: The answer to give for what was done.
 
     Raises:
         ProblemError: The key is none, was used for something else, or its request is still running.
@@ -59,13 +62,13 @@ def once(
     if isinstance(claim, Given):
         return _response(claim)
     try:
-        order = work(lambda session, view: keep_answer(session, claim, answer(view)))
+        done = work(lambda session, view: keep_answer(session, claim, answer(view)))
     except StillRunningError as fault:  # it took so long that another took its claim over; nothing was done
         raise _still_running(key) from fault
     except BaseException:
         give_up(parts.store, claim)
         raise
-    return _response(answer(order))
+    return _response(answer(done))
 
 
 def _claimed(parts: Parts, asker: Asker, asked: Request, key: str, brought: Mapping[str, bytes]) -> Claim | Given:

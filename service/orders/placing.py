@@ -61,7 +61,7 @@ def place_order(store: Store, keeper: FileKeeper, asker: Asker, asked: AskedOrde
     return store.again(placing)
 
 
-def nothing_more(_session: Session, _order: OrderView) -> None:
+def nothing_more(_session: Session, _done: object) -> None:
     """For `also`, where there is nothing."""
 
 
