@@ -69,8 +69,8 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
 def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]:
     """What is computed at once and kept for a while."""
     settings = parts.settings
-    yield layout_routes(LayoutDesk(planner, LayoutCache(settings)), settings.limits)
-    yield trial_piece_routes(settings.limits)
+    yield layout_routes(LayoutDesk(planner, LayoutCache(settings)), parts)
+    yield trial_piece_routes(parts)
     yield sheet_routes(settings.limits)
     yield catalogue_routes(parts)
     yield about_routes(settings.limits)

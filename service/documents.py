@@ -1,6 +1,6 @@
-"""A movement or a cutter as it was asked for: by the id of one that ships, or as a document of one's own."""
+"""A movement or a cutter as it was asked for: by the id of one that ships or is kept, or as a document sent along."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from layout.documents import (
     Cutter,
@@ -13,6 +13,8 @@ from layout.documents import (
     shipped_cutter_ids,
     shipped_movement,
 )
+from service.store.documents import document_in_force
+from service.store.store import Store
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -30,6 +32,25 @@ class Written:
 
 
 Source = Shipped | Written
+
+
+def kept_for(store: Store, owner_id: str | None, kind: str, source: Source) -> Source:
+    """What an id names for an owner: the text of its own document or the shop's; left as it is where there is none.
+
+    Args:
+        store: The database; not asked where nobody in particular asks, or the document was sent along.
+        owner_id: Who asks; None for nobody in particular, for whom there is what ships alone.
+        kind: "movement" or "cutter".
+        source: As it was asked for.
+
+    Raises:
+        StoreBusyError: The database does not answer.
+    """
+    if owner_id is None or isinstance(source, Written):
+        return source
+    with store.reading() as session:
+        kept = document_in_force(session, owner_id, kind, source.id)
+    return source if kept is None or kept.owner_id is None else Written(text=kept.text)
 
 
 def default_cutter() -> Source:
@@ -85,6 +106,14 @@ class Inputs:
     movement: Source
     cutter: Source
     settings: bytes
+
+    def kept_for(self, store: Store, owner_id: str | None) -> "Inputs":
+        """The same, with the texts of the documents that their ids name for an owner."""
+        return replace(
+            self,
+            movement=kept_for(store, owner_id, "movement", self.movement),
+            cutter=kept_for(store, owner_id, "cutter", self.cutter),
+        )
 
     def read(self) -> "Documents":
         """The documents, checked.

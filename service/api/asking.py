@@ -159,7 +159,7 @@ class _Gate:
             raise ProblemError(name="internal-error", detail="the service failed; its log holds more")
         for name in ("asker", "browser", "count"):  # of a request before in the same context
             g.pop(name, None)
-        g.by_key = access.openness is Openness.NOBODY or access.sees_more
+        g.by_key = access.openness is not Openness.ALL or access.sees_more
         if access.openness is Openness.ALL and not access.sees_more:
             if access.is_counted:
                 self._count(asked, of_address(asked.remote_addr))

@@ -23,8 +23,12 @@ class LayoutDesk:
         """Names the program that makes the bytes: part of every entity tag."""
         return self._cache.program
 
-    def lay_out_discs(self, inputs: Inputs) -> tuple[KeptLayout, ...]:
+    def lay_out_discs(self, inputs: Inputs, owner_id: str | None = None) -> tuple[KeptLayout, ...]:
         """The layouts of these inputs, one for each disc, in order, kept from now on.
+
+        Args:
+            inputs: What they are made from.
+            owner_id: For whom they are kept; None for nobody in particular.
 
         Raises:
             LayoutError: The tune or a document cannot be used.
@@ -35,19 +39,20 @@ class LayoutDesk:
             self._planner.fingerprint_of(inputs.tune, *documents, number)
             for number in range(1, read.settings.discs + 1)
         ]
-        found = [self._cache.get(fingerprint) for fingerprint in fingerprints]
+        found = [self._cache.get(fingerprint, owner_id) for fingerprint in fingerprints]
         kept = tuple(layout for layout in found if layout is not None and layout.inputs == inputs)
         if len(kept) == len(fingerprints):
             return kept
-        kept = tuple(self._kept(laid_out, inputs) for laid_out in self._compute(inputs))
+        kept = tuple(self._kept(laid_out, inputs, owner_id) for laid_out in self._compute(inputs))
         for layout in kept:
             self._cache.put(layout)
             log.info("laid out %s", layout.fingerprint)
         return kept
 
-    def find(self, fingerprint: str) -> KeptLayout | None:
-        """The layout kept under a fingerprint, or None."""
-        return self._cache.get(fingerprint)
+    def find(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
+        """The layout kept under a fingerprint for an owner, else for nobody in particular, or None."""
+        own = None if owner_id is None else self._cache.get(fingerprint, owner_id)
+        return own or self._cache.get(fingerprint)
 
     def marked_files(self, kept: KeptLayout, reason: str) -> dict[str, bytes]:
         """All files of a layout that is not good to cut, marked so and with the reason why they are given."""
@@ -56,7 +61,7 @@ class LayoutDesk:
             latest = {layout.fingerprint: layout for layout in self._compute(kept.inputs)}
         return self._planner.files_of(latest[kept.fingerprint], not_good=reason)
 
-    def _kept(self, laid_out: Layout, inputs: Inputs) -> KeptLayout:
+    def _kept(self, laid_out: Layout, inputs: Inputs, owner_id: str | None) -> KeptLayout:
         return KeptLayout(
             fingerprint=laid_out.fingerprint,
             title=laid_out.title,
@@ -65,6 +70,7 @@ class LayoutDesk:
             good_to_cut=laid_out.good_to_cut,
             inputs=inputs,
             files=self._planner.files_of(laid_out),
+            owner_id=owner_id,
         )
 
     def _compute(self, inputs: Inputs) -> tuple[Layout, ...]:

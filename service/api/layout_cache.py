@@ -3,7 +3,7 @@
 A layout is one file, a ZIP archive of its inputs and its files. It is written beside its name and then
 renamed, so that no worker ever sees half of one. A look at a layout renews the time of its file; where
 there are too many, the oldest go. The file's name holds a digest of the program, so that another version
-never gives out what an earlier one made.
+never gives out what an earlier one made, and one of the owner: what was laid out for one is not there for another.
 """
 
 import contextlib
@@ -44,6 +44,7 @@ class KeptLayout:
         good_to_cut: Whether no error-level finding stands.
         inputs: What it was made from.
         files: Its files by name; without the cutting files where they are kept back.
+        owner_id: Whose it is, and no other's to see; None for nobody's in particular.
     """
 
     fingerprint: str
@@ -53,6 +54,7 @@ class KeptLayout:
     good_to_cut: bool
     inputs: Inputs
     files: Mapping[str, bytes]
+    owner_id: str | None = None
 
     @property
     def part(self) -> str:
@@ -76,13 +78,14 @@ class LayoutCache:
         self.program = program_digest()
         _make_own_folder(self._folder)
 
-    def get(self, fingerprint: str) -> KeptLayout | None:
-        """The layout of a fingerprint, or None where none is kept.
+    def get(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
+        """The layout of a fingerprint that is an owner's, or None where none is kept.
 
         Args:
             fingerprint: Hex digits; checked by the caller, as it becomes a file name.
+            owner_id: Whose; None for those that are nobody's in particular.
         """
-        path = self._path(fingerprint)
+        path = self._path(fingerprint, owner_id)
         try:
             layout = _unpacked(path.read_bytes())
         except FileNotFoundError:
@@ -108,14 +111,16 @@ class LayoutCache:
         try:
             with os.fdopen(handle, "wb") as file:
                 file.write(packed)
-            os.replace(part, self._path(layout.fingerprint))
+            os.replace(part, self._path(layout.fingerprint, layout.owner_id))
         except BaseException:
             Path(part).unlink(missing_ok=True)
             raise
-        self._let_go(keep=self._path(layout.fingerprint), taken_bytes=len(packed))
+        self._let_go(keep=self._path(layout.fingerprint, layout.owner_id), taken_bytes=len(packed))
 
-    def _path(self, fingerprint: str) -> Path:
-        return self._folder / f"{fingerprint}-{self.program}{SUFFIX}"
+    def _path(self, fingerprint: str, owner_id: str | None = None) -> Path:
+        # A digest of the owner's id, which the folder's own user alone may list: no id becomes part of a path.
+        whose = "" if owner_id is None else f"-{hashlib.sha256(owner_id.encode()).hexdigest()[:16]}"
+        return self._folder / f"{fingerprint}-{self.program}{whose}{SUFFIX}"
 
     def _let_go(self, keep: Path, taken_bytes: int) -> None:
         seen = []
@@ -177,6 +182,7 @@ def _packed(layout: KeptLayout) -> bytes:
         "disc_number": layout.disc_number,
         "disc_count": layout.disc_count,
         "good_to_cut": layout.good_to_cut,
+        "owner_id": layout.owner_id,
         "movement": inputs.movement.id if isinstance(inputs.movement, Shipped) else None,
         "cutter": inputs.cutter.id if isinstance(inputs.cutter, Shipped) else None,
     }
@@ -206,6 +212,7 @@ def _unpacked(packed: bytes) -> KeptLayout:
         disc_number=about["disc_number"],
         disc_count=about["disc_count"],
         good_to_cut=about["good_to_cut"],
+        owner_id=about["owner_id"],
         inputs=Inputs(
             tune=members["tune.mid"],
             movement=source("movement"),

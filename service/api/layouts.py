@@ -14,7 +14,7 @@ from layout.walk import CUTTING_FILES, FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
-from service.api.asking import open_on_loopback
+from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.layout_cache import KeptLayout
@@ -26,6 +26,7 @@ from service.api.request_models import read_arguments
 from service.download_names import ALL_FILES, NamedDisc, content_disposition, download_name
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES
+from service.parts import Parts
 
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
 # What a POST can answer with, by media type; the first where the client does not mind.
@@ -39,13 +40,14 @@ ANSWERS: dict[str, str | None] = {
 ANSWERS_FOR_SEVERAL: dict[str, str | None] = {JSON_MEDIA_TYPE: None, ZIP_MEDIA_TYPE: ALL_FILES}
 
 
-def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
+def layout_routes(desk: LayoutDesk, parts: Parts) -> Blueprint:
     """The routes of layouts.
 
     Args:
         desk: Computes and keeps layouts.
-        limits: Read for limits.
+        parts: Read for limits, and for the documents that owners keep.
     """
+    limits = parts.settings.limits
     routes = Blueprint("layouts", __name__, url_prefix="/v1/layouts")
     teller = LayoutTeller(desk, limits)
 
@@ -58,9 +60,9 @@ def layout_routes(desk: LayoutDesk, limits: Limits) -> Blueprint:
     def make_layout() -> Response:
         _answer_wanted(request, 1)  # what is acceptable in no case is refused before anything is read
         query = read_arguments(request, LayoutQuery)
-        inputs = read_posted(request, query, limits)
+        inputs = read_posted(request, query, limits).kept_for(parts.store, _owner_id())
         file_name = _answer_wanted(request, inputs.read().settings.discs)
-        response = teller.made(desk.lay_out_discs(inputs), file_name, query.despite_findings)
+        response = teller.made(desk.lay_out_discs(inputs, _owner_id()), file_name, query.despite_findings)
         response.vary.add("Accept")
         return response
 
@@ -222,8 +224,13 @@ def _answer_wanted(asked: Request, disc_count: int) -> str | None:
     return answers[best]
 
 
+def _owner_id() -> str | None:
+    asker = asker_or_none()
+    return None if asker is None else asker.owner_id
+
+
 def _found(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
-    kept = desk.find(fingerprint) if FINGERPRINT.fullmatch(fingerprint) else None
+    kept = desk.find(fingerprint, _owner_id()) if FINGERPRINT.fullmatch(fingerprint) else None
     if kept is None:
         raise ProblemError(
             name="layout-unknown",

@@ -11,7 +11,7 @@ from layout.trial_walk import trial_files
 from service.access.scopes import Scope
 from service.api.answers import json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
-from service.api.asking import open_on_loopback
+from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.failures import too_large
 from service.api.models.layouts import TrialPieceQuery
@@ -20,9 +20,10 @@ from service.api.operations import layouts
 from service.api.posted import source_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
-from service.documents import cutter_from, default_cutter, movement_from
+from service.documents import cutter_from, default_cutter, kept_for, movement_from
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE
+from service.parts import Parts
 
 FORM_MEDIA_TYPE = "multipart/form-data"
 DOCUMENT_PARTS = ("movement", "cutter")
@@ -45,11 +46,11 @@ class _Asked:
     cutter: Cutter
 
 
-def trial_piece_routes(limits: Limits, make: TrialMaker = trial_files) -> Blueprint:
+def trial_piece_routes(parts: Parts, make: TrialMaker = trial_files) -> Blueprint:
     """The route of trial pieces.
 
     Args:
-        limits: Read for limits.
+        parts: Read for limits, and for the documents that owners keep.
         make: The computation: the files by name.
     """
     routes = Blueprint("trial_pieces", __name__, url_prefix="/v1/trial-pieces")
@@ -60,7 +61,7 @@ def trial_piece_routes(limits: Limits, make: TrialMaker = trial_files) -> Bluepr
     def make_trial_piece() -> Response:
         file_name = _answer_wanted(request)  # what is not acceptable is refused before anything is read
         query = read_arguments(request, TrialPieceQuery)
-        asked = _read(request, query, limits)
+        asked = _read(request, query, parts)
         response = _answer(asked, make(asked.movement, asked.cutter), file_name)
         response.vary.add("Accept")
         return response
@@ -102,7 +103,7 @@ def _answer_wanted(asked: Request) -> str:
     return ANSWERS[best]
 
 
-def _read(asked: Request, query: TrialPieceQuery, limits: Limits) -> _Asked:
+def _read(asked: Request, query: TrialPieceQuery, opened: Parts) -> _Asked:
     """The documents that a request names or brings.
 
     Raises:
@@ -110,6 +111,7 @@ def _read(asked: Request, query: TrialPieceQuery, limits: Limits) -> _Asked:
             missing or given twice.
         LayoutError: A document does not ship or is not valid.
     """
+    limits = opened.settings.limits
     parts = _parts(asked, limits)
     for name, part in parts.items():
         if len(part) > limits.document_bytes:
@@ -122,6 +124,10 @@ def _read(asked: Request, query: TrialPieceQuery, limits: Limits) -> _Asked:
             more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
         )
     cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    asker = asker_or_none()
+    owner_id = None if asker is None else asker.owner_id
+    movement = kept_for(opened.store, owner_id, "movement", movement)
+    cutter = kept_for(opened.store, owner_id, "cutter", cutter)
     return _Asked(movement=movement_from(movement), cutter=cutter_from(cutter))
 
 
