@@ -21,11 +21,13 @@ from service.api.hooks import hook_routes
 from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
 from service.api.layouts import layout_routes
+from service.api.openapi import openapi_routes
 from service.api.order_decisions import decision_routes
 from service.api.order_files import order_file_routes
 from service.api.orders import order_routes
 from service.api.problem_pages import problem_pages
 from service.api.proofs import proof_routes
+from service.api.request_ids import name_requests
 from service.api.sheets import sheet_routes
 from service.api.sign_in import sign_in_routes
 from service.api.trial_pieces import trial_piece_routes
@@ -62,7 +64,9 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
     guard(app, parts, Rates(settings.access))
     for routes in (*_routes_of_layouts(planner, parts), *_routes_of_orders(parts, queue)):
         app.register_blueprint(routes)
+    app.register_blueprint(openapi_routes(settings.places.public_url))
     app.after_request(with_safe_head)
+    name_requests(app)
     return app
 
 

@@ -7,7 +7,7 @@ import math
 from collections import Counter
 from collections.abc import Mapping
 from itertools import pairwise
-from typing import Annotated, Literal, Self
+from typing import Annotated, Any, Literal, Self
 
 from pydantic import Discriminator, Field, PrivateAttr, Tag, field_validator, model_validator
 
@@ -135,6 +135,20 @@ class Track(Part):
     release_arc_mm: Offset | None = None
 
 
+class TrackRange(Part):
+    """Equally spaced tracks, as a person may write them."""
+
+    first_radius_mm: Positive
+    last_radius_mm: Positive
+    count: Annotated[int, Field(ge=1, le=MOST_TRACKS)]
+
+
+def _or_equally_spaced(schema: dict[str, Any]) -> None:
+    listed = dict(schema)
+    schema.clear()
+    schema["anyOf"] = [listed, TrackRange.model_json_schema()]
+
+
 class Tooth(Part):
     """One tuned tooth of the comb and the track that plucks it."""
 
@@ -188,7 +202,9 @@ class Movement(Part):
     damper_arc_mm: LengthOrZero = 0.0
     damper_recovery_s: TimeOrZero = 0.0
     drive: Drive | None = None
-    tracks: Annotated[tuple[Track, ...], Field(min_length=1, max_length=MOST_TRACKS)]
+    tracks: Annotated[
+        tuple[Track, ...], Field(min_length=1, max_length=MOST_TRACKS, json_schema_extra=_or_equally_spaced)
+    ]
     teeth: Annotated[tuple[Tooth, ...], Field(min_length=1, max_length=MOST_TEETH)]
     _stated: dict[str, Stated] = PrivateAttr(default_factory=dict)
 
@@ -371,11 +387,6 @@ def _worth_of_listed(stated: Mapping[str, Json], count: int) -> dict[str, Json]:
 
 
 def _listed_tracks(spread: Json) -> list[Json]:
-    class TrackRange(Part):
-        first_radius_mm: Positive
-        last_radius_mm: Positive
-        count: Annotated[int, Field(ge=1, le=MOST_TRACKS)]
-
     try:
         row = check_document(TrackRange, spread, document="movement")
     except DocumentError as error:

@@ -15,7 +15,9 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import document_response, json_bytes, json_response
 from service.api.asking import asker_or_none, needs, open_and_more_with
+from service.api.describing import describes
 from service.api.models.documents import DocumentQuery, DocumentsQuery
+from service.api.operations import catalogue
 from service.api.posted import body_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
@@ -64,26 +66,31 @@ def _add_routes(routes: Blueprint, kind: str, shelf: "_Shelf") -> None:
     path = f"/{kind}s/<document_id>"
 
     @routes.get(f"/{kind}s", endpoint=f"list_{kind}s")
+    @describes(catalogue.LIST[kind])
     @open_and_more_with(Scope.READ)
     def list_all() -> Response:
         return shelf.list_all(asker_or_none(), request)
 
     @routes.get(path, endpoint=f"tell_{kind}")
+    @describes(catalogue.TELL[kind])
     @open_and_more_with(Scope.READ)
     def tell(document_id: str) -> Response:
         return shelf.tell(asker_or_none(), document_id, request)
 
     @routes.get(f"{path}/revisions", endpoint=f"list_revisions_of_{kind}")
+    @describes(catalogue.REVISIONS[kind])
     @open_and_more_with(Scope.READ)
     def revisions(document_id: str) -> Response:
         return shelf.revisions(asker_or_none(), document_id)
 
     @routes.put(path, endpoint=f"save_{kind}")
+    @describes(catalogue.SAVE[kind])
     @needs(Scope.MOVEMENTS)
     def save(asker: Asker, document_id: str) -> Response:
         return shelf.save(asker, document_id, request)
 
     @routes.delete(path, endpoint=f"withdraw_{kind}")
+    @describes(catalogue.WITHDRAW[kind])
     @needs(Scope.MOVEMENTS)
     def withdraw(asker: Asker, document_id: str) -> Response:
         return shelf.withdraw(asker, document_id, request)

@@ -104,7 +104,7 @@ class Example:
         query: Of the query.
         headers: Fields of the head.
         media_type: Of the body; "" for no body.
-        body: A JSON value; bytes; or for a form, parts by name, each one of these.
+        body: A JSON value; bytes; for a form, parts by name, each one of these; or what gives one when it is called.
     """
 
     status: int
@@ -114,6 +114,11 @@ class Example:
     headers: Mapping[str, str] = field(default_factory=dict)
     media_type: str = ""
     body: Any = None
+
+    @property
+    def content(self) -> Any:
+        """The body; parts of a form by name."""
+        return self.body() if callable(self.body) else self.body
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -1,7 +1,5 @@
 """What the service tells of itself."""
 
-from typing import Any
-
 from pydantic import ConfigDict, Field
 
 from layout.documents.reading import Part
@@ -20,6 +18,13 @@ class HealthAnswer(Part):
 
     status: str
     engine_version: str
+
+
+class ReadyAnswer(Part):
+    """That the service can serve."""
+
+    status: str
+    parts: dict[str, str] = Field(description="what each part says")
 
 
 class LimitAnswer(Part):
@@ -67,6 +72,3 @@ class Problem(Part):
     try_again: bool = Field(
         description="whether the very same request may do better later, after the seconds of Retry-After"
     )
-
-
-JsonSchema = dict[str, Any]

@@ -4,6 +4,8 @@ from pydantic import Field
 
 from layout.documents.reading import Part
 
+KEPT_BY = 'whose it is: "own", "shop", or "shipped" with the program'
+
 
 class MovementLine(Part):
     """A movement, in short."""
@@ -19,6 +21,7 @@ class MovementLine(Part):
     thickness_mm: float
     material: str
     projection: str
+    kept_by: str = Field(description=KEPT_BY)
 
 
 class MovementsAnswer(Part):
@@ -37,6 +40,8 @@ class CutterLine(Part):
     kerf_mm: float
     min_web_mm: float
     is_default: bool
+    revision: int
+    kept_by: str = Field(description=KEPT_BY)
 
 
 class CuttersAnswer(Part):

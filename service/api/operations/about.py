@@ -9,9 +9,9 @@ from service.api.models.about import (
     LimitsAnswer,
     ProblemKindAnswer,
     ProblemKindsAnswer,
+    ReadyAnswer,
 )
 from service.api.models.layouts import FileRecord
-from service.api.models.shipped import CuttersAnswer, MovementsAnswer
 from service.api.operations.common import ETAG, IF_NONE_MATCH, NOT_MODIFIED, told
 
 TAG = "about"
@@ -70,5 +70,18 @@ SCHEMA = Operation(
     ),
     examples=(Example(status=200, path={"name": "movement"}),),
 )
-MOVEMENTS = _open("list_movements", "The movements", told(MovementsAnswer, "Each in short.", ETAG))
-CUTTERS = _open("list_cutters", "The cutters", told(CuttersAnswer, "Each in short.", ETAG))
+READY = Operation(
+    id="tell_readiness",
+    tag="operations",
+    summary="Whether the service can serve now",
+    answers=(told(ReadyAnswer, "All parts answer."),),
+    problems=("not-ready",),
+    examples=(Example(status=200),),
+)
+METRICS = Operation(
+    id="tell_metrics",
+    tag="operations",
+    summary="How the service fares, as text for Prometheus",
+    answers=(Answer(status=200, meaning="The figures.", contents={"text/plain": None}),),
+    examples=(Example(status=200),),
+)
