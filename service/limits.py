@@ -24,6 +24,22 @@ class Limits:
         10 * MIB, "bytes", "largest drawing that is checked: a disc of 20,000 projections; reading one takes a minute"
     )
     sheet_form_bytes: int = limit(
+    run_bytes: int = limit(
+        64 * MIB, "bytes", "largest form that asks for a run: 10,000 tunes of usual size, packed; held in memory once"
+    )
+    run_orders: int = limit(10_000, "orders", "most pairs of a tune and a movement in one run: a shop's whole shelf")
+    run_entries: int = limit(
+        20_000, "files", "most files and folders in an archive: twice its tunes, for what else lies there; 1 kB each"
+    )
+    run_unpacked_bytes: int = limit(
+        512 * MIB, "bytes", "most that all tunes of an archive unpack to: 10,000 of 50 kB, far above usual ones"
+    )
+    run_orders_waiting: int = limit(
+        200, "orders", "orders of runs that wait for a worker at a time, so that an order placed alone waits for few"
+    )
+    run_orders_at_a_time: int = limit(
+        20, "orders", "pairs of a run that a worker makes orders of in one go, so that it looks round now and then"
+    )
         6 * MIB, "bytes", "largest form with a sheet job and drawings: the largest job, and 4 MiB of drawings"
     )
     reason_characters: int = limit(
