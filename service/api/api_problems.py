@@ -26,7 +26,7 @@ def problems_of(operation: Operation, access: Access, method: str, *, has_path: 
         names.add("parameter-invalid")
     fields = {field.name for field in operation.headers}
     if "Idempotency-Key" in fields:
-        names |= {"key-reused", "still-running"}
+        names |= {"key-reused", "still-running", "answer-deleted"}
     by_status: dict[int, tuple[str, ...]] = {}
     for name in sorted(names):
         status = PROBLEMS[name].status
