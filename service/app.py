@@ -27,6 +27,7 @@ from service.api.order_files import order_file_routes
 from service.api.orders import order_routes
 from service.api.problem_pages import problem_pages
 from service.api.proofs import proof_routes
+from service.api.quotes import quote_routes
 from service.api.request_ids import name_requests
 from service.api.sheets import sheet_routes
 from service.api.sign_in import sign_in_routes
@@ -75,6 +76,7 @@ def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]
     settings = parts.settings
     yield layout_routes(LayoutDesk(planner, LayoutCache(settings)), parts)
     yield trial_piece_routes(parts)
+    yield quote_routes(planner, parts)
     yield sheet_routes(settings.limits)
     yield catalogue_routes(parts)
     yield about_routes(settings.limits)

@@ -60,6 +60,11 @@ def once(
         return _response(answer(work(nothing_more)))
     claim = _claimed(parts, asker, asked, key, brought)
     if isinstance(claim, Given):
+        if not claim.body:
+            raise ProblemError(
+                name="answer-deleted",
+                detail=f"the request with the {FIELD} {key!r} was done, and what it made was deleted since",
+            )
         return _response(claim)
     try:
         done = work(lambda session, view: keep_answer(session, claim, answer(view)))

@@ -8,6 +8,7 @@ from service.orders.faults import (
     ChangedMeanwhileError,
     FindingsStandError,
     InputRefusedError,
+    NotPricedError,
     OrderFault,
     OrderUnknownError,
     StateForbidsError,
@@ -25,6 +26,7 @@ _NAMES: dict[type[OrderFault], str] = {
     StateForbidsError: "state-forbids",
     FindingsStandError: "findings-stand",
     ChangedMeanwhileError: "order-changed",
+    NotPricedError: "not-priced",
 }
 
 

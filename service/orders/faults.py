@@ -29,5 +29,9 @@ class InputRefusedError(OrderFault):
         self.pointer = pointer
 
 
+class NotPricedError(OrderFault):
+    """No price can be told; the text says which fields of the documents would tell it."""
+
+
 class ChangedMeanwhileError(OrderFault):
     """Another change came first; read the order again."""

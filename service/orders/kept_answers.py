@@ -17,6 +17,7 @@ from service.store.inserting import insert_into
 from service.store.store import Store
 from service.store.tables import KeptAnswer
 
+ABOUT = "Content-Location"  # the field of an answer's head that says what it tells of
 CLAIMED_S = 150  # s; longer than the web process gives a request, so that a claim run out is of a request that ended
 
 
@@ -47,7 +48,7 @@ class Claim:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Given:
-    """An answer as it was given."""
+    """An answer as it was given; its body is empty where what it told of was deleted since."""
 
     status: int
     headers: Mapping[str, str]
@@ -104,10 +105,25 @@ def keep_answer(session: Session, claim: Claim, given: Given) -> None:
     Raises:
         StillRunningError: Another took the claim over; the transaction must not be committed.
     """
-    values = {"status": given.status, "headers": dict(given.headers), "body": given.body}
+    values = {
+        "status": given.status,
+        "headers": dict(given.headers),
+        "body": given.body,
+        "about": given.headers.get(ABOUT),
+    }
     mine = update(KeptAnswer).where(*_row_of(claim.asked), KeptAnswer.token == claim.token).values(values)
     if session.execute(mine).rowcount == 0:  # type: ignore[attr-defined]
         raise StillRunningError
+
+
+def empty_answers(session: Session, about: str) -> None:
+    """Take from kept answers what they tell of something; that their requests were done is still known.
+
+    Args:
+        session: Of the transaction that deletes it.
+        about: Its address.
+    """
+    session.execute(update(KeptAnswer).where(KeptAnswer.about == about).values(body=b""))
 
 
 def give_up(store: Store, claim: Claim) -> None:

@@ -1,19 +1,23 @@
 """Quotes: an order's input planned for its price alone, from the cutter's stated rates."""
 
 import json
+from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import datetime, timedelta
 from decimal import Decimal
 from typing import Any
 
+from sqlalchemy import delete, exists
+from sqlalchemy.orm import Session
+
 from service.access.asker import Asker
 from service.orders.asked import AskedOrder, read_order
-from service.orders.faults import OrderUnknownError
+from service.orders.faults import NotPricedError, OrderUnknownError
 from service.orders.quotes import inputs_digest, quote_row
 from service.planner import AnyPlanner
 from service.store.ids import new_id
 from service.store.store import Store
-from service.store.tables import Quote
+from service.store.tables import Order, Quote
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -39,14 +43,23 @@ class QuoteView:
     valid_until: datetime
 
 
-class NotPricedError(Exception):
-    """No price can be told; the text says which field of the cutter would tell it."""
+AlsoQuote = Callable[[Session, QuoteView], None]  # what is written in the same transaction, such as the answer
 
 
-def quote_order(store: Store, planner: AnyPlanner, asker: Asker, asked: AskedOrder, *, days: int) -> QuoteView:
-    """Work out the price of an order and keep it.
+def quote_order(
+    store: Store, planner: AnyPlanner, asker: Asker, asked: AskedOrder, also: AlsoQuote, *, days: int
+) -> QuoteView:
+    """Work out the price of an order and keep it; of the tune itself nothing is kept but a digest.
 
     Setting up is counted once for each disc of a set, everything else for each copy.
+
+    Args:
+        store: The database.
+        planner: The computation.
+        asker: Who asks.
+        asked: What would be ordered.
+        also: What is written in the same transaction.
+        days: How long the price holds.
 
     Raises:
         InputRefusedError, MidiReadError, DocumentError: As `read_order`.
@@ -55,7 +68,10 @@ def quote_order(store: Store, planner: AnyPlanner, asker: Asker, asked: AskedOrd
     read = read_order(store, asker, asked)
     layouts = planner.lay_out_discs(asked.tune, read.movement, read.cutter, read.settings)
     makings = [json.loads(planner.files_of(laid_out, not_good="priced")["making.json"]) for laid_out in layouts]
-    discs = [_disc_told(number, making, asked.quantity) for number, making in enumerate(makings, start=1)]
+    discs = [
+        {"good_to_cut": laid_out.good_to_cut, **_disc_told(laid_out.disc_number, making, asked.quantity)}
+        for laid_out, making in zip(layouts, makings, strict=True)
+    ]
     total = sum((Decimal(disc["amount"]) for disc in discs), Decimal(0))
     with store.writing() as session:
         now = store.now(session)
@@ -65,7 +81,7 @@ def quote_order(store: Store, planner: AnyPlanner, asker: Asker, asked: AskedOrd
             key_id=asker.key_id,
             inputs_digest=inputs_digest(read.inputs),
             quantity=asked.quantity,
-            total=str(total),
+            total=f"{total:f}",
             currency=makings[0]["currency"],
             told={"discs": discs},
             created_at=now,
@@ -73,7 +89,9 @@ def quote_order(store: Store, planner: AnyPlanner, asker: Asker, asked: AskedOrd
         )
         session.add(quote)
         session.flush()
-        return _view(quote)
+        view = _view(quote)
+        also(session, view)
+        return view
 
 
 def find_quote(store: Store, asker: Asker, quote_id: str) -> QuoteView:
@@ -99,11 +117,19 @@ def _disc_told(number: int, making: dict[str, Any], quantity: int) -> dict[str, 
     return {
         "number": number,
         "lines": lines,
-        "once": str(once),
-        "each": str(each),
-        "amount": str(once + each * quantity),
+        "once": f"{once:f}",
+        "each": f"{each:f}",
+        "amount": f"{once + each * quantity:f}",
         "not_counted": making["not_counted"],
     }
+
+
+def forget_quotes(store: Store, *, days: int) -> int:
+    """Remove quotes that no order names and whose price has not held for some days; gives how many."""
+    named = exists().where(Order.quote_id == Quote.id)
+    with store.writing() as session:
+        ended = Quote.valid_until <= store.now(session) - timedelta(days=days)
+        return len(session.scalars(delete(Quote).where(ended, ~named).returning(Quote.id)).all())
 
 
 def _view(quote: Quote) -> QuoteView:

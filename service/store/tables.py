@@ -257,7 +257,8 @@ class KeptAnswer(Row):
     token: Mapped[str] = mapped_column(ID)  # of the request that is answering; guards against a late one
     status: Mapped[int | None]
     headers: Mapped[Facts | None]
-    body: Mapped[bytes | None] = mapped_column(LargeBinary)
+    body: Mapped[bytes | None] = mapped_column(LargeBinary)  # empty where what it told of was deleted
+    about: Mapped[str | None] = mapped_column(String(100), index=True)  # the address of what it tells of
     started_at: Mapped[datetime]
     lease_until: Mapped[datetime]  # after it a request that never ended may be made again
     expires_at: Mapped[datetime] = mapped_column(index=True)

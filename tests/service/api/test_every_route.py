@@ -24,7 +24,7 @@ from service.parts import Parts
 from service.settings import AccessSettings
 from tests.service.api.guarded import bearing, new_key
 from tests.service.conftest import parts_of
-from tests.service.fakes import FakePlanner
+from tests.service.pricing import PricingPlanner
 from tests.service.shop import TUNE
 
 ANY_KEY = Access(scope=None)
@@ -78,6 +78,8 @@ TABLE: dict[str, Access] = {
     "GET /v1/proofs/<text>": COUNTED,
     "GET /v1/proofs/<text>/files/<int:disc>/<name>": COUNTED,
     "POST /v1/proofs/<text>/verdict": COUNTED,
+    "POST /v1/quotes": ORDER,
+    "GET /v1/quotes/<quote_id>": READ,
     "GET /v1/events": READ,
     "GET /v1/event-types": OPEN,
     "GET /v1/hooks": READ,
@@ -104,6 +106,7 @@ OF_NOBODY = {"name", "secret", "text", "document_id", "fingerprint", "file_name"
 OWNED = {
     "key_id": "key_" + 32 * "0",
     "order_id": "order_" + 32 * "0",
+    "quote_id": "quote_" + 32 * "0",
     "hook_id": "hook_" + 32 * "0",
     "delivery_id": "msg_" + 32 * "0",
 }
@@ -136,7 +139,7 @@ def shop(tmp_path_factory: pytest.TempPathFactory) -> Iterator[tuple[Flask, Part
         parts.settings,
         access=AccessSettings(listens_on_loopback=True, read_rate=(10**6, 60), write_rate=(10**6, 60)),
     )
-    yield create_app(settings, planner=FakePlanner()), parts
+    yield create_app(settings, planner=PricingPlanner()), parts
     parts.store.close()
 
 
@@ -224,8 +227,11 @@ def made_by(http: FlaskClient, key: NewKey) -> dict[str, str]:
     headers = bearing(key)
     form = {"tune": (BytesIO(TUNE), "a.mid"), "order": '{"movement": "fernhollow-31"}'}
     order = http.post("/v1/orders", data=form, headers=headers)
+    form = {"tune": (BytesIO(TUNE), "a.mid"), "order": '{"movement": "fernhollow-31"}'}  # what was sent is closed
+    quote = http.post("/v1/quotes", data=form, headers=headers)
     hook = http.post("/v1/hooks", json={"url": f"https://shop.example/{key.told.id}"}, headers=headers)
     made = {"key_id": key.told.id, "order_id": told(order)["id"], "hook_id": told(hook)["id"]}
+    made["quote_id"] = told(quote)["id"]
     return {**made, "delivery_id": told(http.post(f"/v1/hooks/{made['hook_id']}/test", headers=headers))["id"]}
 
 

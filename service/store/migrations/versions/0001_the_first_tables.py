@@ -85,6 +85,7 @@ def upgrade() -> None:
         sa.Column("status", sa.Integer(), nullable=True),
         sa.Column("headers", sa.JSON(), nullable=True),
         sa.Column("body", sa.LargeBinary(), nullable=True),
+        sa.Column("about", sa.String(length=100), nullable=True),
         sa.Column("started_at", Moment(), nullable=False),
         sa.Column("lease_until", Moment(), nullable=False),
         sa.Column("expires_at", Moment(), nullable=False),
@@ -92,6 +93,7 @@ def upgrade() -> None:
         sa.PrimaryKeyConstraint("owner_id", "operation", "key", name=op.f("pk_kept_answers")),
     )
     with op.batch_alter_table("kept_answers", schema=None) as batch_op:
+        batch_op.create_index(batch_op.f("ix_kept_answers_about"), ["about"], unique=False)
         batch_op.create_index(batch_op.f("ix_kept_answers_expires_at"), ["expires_at"], unique=False)
 
     op.create_table(
@@ -366,6 +368,7 @@ def downgrade() -> None:
     op.drop_table("keys")
     with op.batch_alter_table("kept_answers", schema=None) as batch_op:
         batch_op.drop_index(batch_op.f("ix_kept_answers_expires_at"))
+        batch_op.drop_index(batch_op.f("ix_kept_answers_about"))
 
     op.drop_table("kept_answers")
     with op.batch_alter_table("hooks", schema=None) as batch_op:
