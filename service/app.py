@@ -1,14 +1,12 @@
 """The web service: builds the Flask app and wires its parts."""
 
-import logging
 import os
-import sys
 from collections.abc import Iterator
 from datetime import UTC, datetime
 
 from flask import Blueprint, Flask
+from prometheus_client import CollectorRegistry
 
-from layout import walk
 from service.access.rates import Rates
 from service.api.about import about_routes
 from service.api.answers import with_safe_head
@@ -21,6 +19,8 @@ from service.api.hooks import hook_routes
 from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
 from service.api.layouts import layout_routes
+from service.api.metering import meter
+from service.api.metrics import metrics_routes
 from service.api.openapi import openapi_routes
 from service.api.order_decisions import decision_routes
 from service.api.order_files import order_file_routes
@@ -28,26 +28,28 @@ from service.api.orders import order_routes
 from service.api.problem_pages import problem_pages
 from service.api.proofs import proof_routes
 from service.api.quotes import quote_routes
+from service.api.readiness import readiness_routes
 from service.api.request_ids import name_requests
+from service.api.runs import run_routes
 from service.api.sheets import sheet_routes
 from service.api.sign_in import sign_in_routes
 from service.api.trial_pieces import trial_piece_routes
 from service.background.queue import Queue
+from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
 from service.parts import Parts, open_parts
-from service.planner import AnyPlanner
+from service.planner import AnyPlanner, TheWalk
 from service.settings import ServiceSettings, settings_from
 
 OPENED = "discwright opened"
-LOG_LINE = "%(asctime)s %(levelname)s %(message)s"
 
 
-def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner = walk) -> Flask:
+def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner | None = None) -> Flask:
     """The service as a WSGI app. Made after a process has forked, never before: it opens the database.
 
     Args:
         settings: None for those that the environment asks for.
-        planner: The computation.
+        planner: The computation; None for the walk.
 
     Raises:
         SettingsError: The environment asks for something the service cannot do.
@@ -55,16 +57,21 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
     """
     if settings is None:
         settings = settings_from(os.environ)
-    _log_to_stderr()
+    if not is_logging():
+        start_logging(settings.work)
     parts = open_parts(settings)
     queue = Queue(settings.queue_url)
     app = Flask("discwright", static_folder=None, template_folder=None)
     app.extensions[OPENED] = (parts.store, queue)  # what whoever made the app may close
     app.config["MAX_CONTENT_LENGTH"] = settings.limits.upload_bytes + 1  # one more, to see that it is too large
+    counted = CollectorRegistry()
+    meter(app, counted)
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    for routes in (*_routes_of_layouts(planner, parts), *_routes_of_orders(parts, queue)):
+    for routes in (*_routes_of_layouts(planner or TheWalk(), parts), *_routes_of_orders(parts, queue)):
         app.register_blueprint(routes)
+    app.register_blueprint(metrics_routes(parts, queue, counted))
+    app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
     app.after_request(with_safe_head)
     name_requests(app)
@@ -89,6 +96,7 @@ def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
     yield order_routes(parts, queue.send)
     yield decision_routes(parts, queue.send, links)
     yield order_file_routes(parts)
+    yield run_routes(parts)
     yield event_routes(parts)
     yield proof_routes(parts, links)
     yield hook_routes(parts)
@@ -98,12 +106,3 @@ def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
 
 def _now() -> datetime:
     return datetime.now(UTC)
-
-
-def _log_to_stderr() -> None:
-    log = logging.getLogger("discwright")
-    if not log.hasHandlers():
-        handler = logging.StreamHandler(sys.stderr)
-        handler.setFormatter(logging.Formatter(LOG_LINE))
-        log.addHandler(handler)
-        log.setLevel(logging.INFO)

@@ -3,8 +3,6 @@
 from dataclasses import dataclass
 
 from layout.limits import Limit, limit, limits_told
-from layout.sheet_walk import LIMITS_OF_SHEETS
-from layout.walk import LIMITS_OF_READING
 
 MIB = 1024 * 1024
 
@@ -24,8 +22,13 @@ class Limits:
         10 * MIB, "bytes", "largest drawing that is checked: a disc of 20,000 projections; reading one takes a minute"
     )
     sheet_form_bytes: int = limit(
+        6 * MIB, "bytes", "largest form with a sheet job and drawings: the largest job, and 4 MiB of drawings"
+    )
     run_bytes: int = limit(
         64 * MIB, "bytes", "largest form that asks for a run: 10,000 tunes of usual size, packed; held in memory once"
+    )
+    run_list_bytes: int = limit(
+        4 * MIB, "bytes", "largest list of what a run orders: 10,000 pairs with names and references take 2 MiB"
     )
     run_orders: int = limit(10_000, "orders", "most pairs of a tune and a movement in one run: a shop's whole shelf")
     run_entries: int = limit(
@@ -39,8 +42,6 @@ class Limits:
     )
     run_orders_at_a_time: int = limit(
         20, "orders", "pairs of a run that a worker makes orders of in one go, so that it looks round now and then"
-    )
-        6 * MIB, "bytes", "largest form with a sheet job and drawings: the largest job, and 4 MiB of drawings"
     )
     reason_characters: int = limit(
         200, "characters", "longest despite_findings reason: it is lettered on the disc and stands in every file"
@@ -69,4 +70,8 @@ class Limits:
 
     def told(self) -> tuple[Limit, ...]:
         """Every limit: those of reading a tune, of sheet jobs, then these, in the order of the fields."""
+        # The computation takes a second to import, and is needed here only for what it limits itself.
+        from layout.sheet_walk import LIMITS_OF_SHEETS  # noqa: PLC0415
+        from layout.walk import LIMITS_OF_READING  # noqa: PLC0415
+
         return LIMITS_OF_READING + LIMITS_OF_SHEETS + limits_told(self)

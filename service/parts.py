@@ -8,7 +8,7 @@ from pathlib import Path
 
 from service.settings import ServiceSettings
 from service.store.files import FileStore
-from service.store.migrating import check_migrated, migrate
+from service.store.migrating import bring_up_to_date, check_migrated
 from service.store.store import Store
 from service.variables import SettingsError
 
@@ -54,7 +54,7 @@ def open_parts(settings: ServiceSettings) -> Parts:
         ) from fault
     store = Store(settings.database_url)
     if store.is_sqlite:
-        migrate(store)
+        bring_up_to_date(store)
     check_migrated(store)
     return Parts(settings=settings, store=store, files=FileStore(settings.files_url), secret=secret)
 

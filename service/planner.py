@@ -1,13 +1,18 @@
 """The computation as the service and the command see it: a port, filled by `layout.walk`, by a fake in tests."""
 
-from collections.abc import Callable
-from typing import Any, Protocol, TypeVar
+from __future__ import annotations
 
-from layout.check.finding import Finding
-from layout.documents import Cutter, Movement, Settings
-from layout.place.disc import Disc
-from layout.play.plucks import Plucks
-from layout.read.score import Score
+from collections.abc import Callable
+from typing import TYPE_CHECKING, Any, Protocol, TypeVar
+
+if TYPE_CHECKING:
+    from types import ModuleType
+
+    from layout.check.finding import Finding
+    from layout.documents import Cutter, Movement, Settings
+    from layout.place.disc import Disc
+    from layout.play.plucks import Plucks
+    from layout.read.score import Score
 
 Clock = Callable[[], float]  # seconds, only ever forward
 
@@ -84,3 +89,36 @@ class Planner(Protocol[LayoutT]):
 
 
 AnyPlanner = Planner[Any]  # a planner with layouts of its own kind, which only it looks into
+
+
+class TheWalk:
+    """`layout.walk`, imported when it is first asked for anything: it takes a second, and much is done without it."""
+
+    def lay_out_discs(
+        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+    ) -> tuple[Any, ...]:
+        """As `layout.walk` does."""
+        laid_out: tuple[Any, ...] = _walk().lay_out_discs(tune, movement, cutter, settings, clock)
+        return laid_out
+
+    def fingerprint_of(
+        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1
+    ) -> str:
+        """As `layout.walk` does."""
+        return str(_walk().fingerprint_of(tune, movement, cutter, settings, number))
+
+    def files_of(self, laid_out: Any, *, not_good: str | None = None) -> dict[str, bytes]:
+        """As `layout.walk` does."""
+        files: dict[str, bytes] = _walk().files_of(laid_out, not_good=not_good)
+        return files
+
+    def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
+        """As `layout.walk` does."""
+        checked: CheckedDrawing = _walk().check_drawing(dxf, movement, cutter)
+        return checked
+
+
+def _walk() -> ModuleType:
+    from layout import walk  # noqa: PLC0415 -- as the class says
+
+    return walk

@@ -87,4 +87,12 @@ KINDS = (
         what_to_do="Nothing was kept. Tell the shop to make room, then send the same request again.",
         try_again=True,
     ),
+    ProblemKind(
+        name="not-ready",
+        status=503,
+        title="The service is not ready",
+        what_to_do="away names what does not answer; the service's log says why. Ask again in some seconds. "
+        "`discwright check-setup`, run on the service's machine, says what to mend.",
+        try_again=True,
+    ),
 )

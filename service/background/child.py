@@ -30,6 +30,7 @@ from service.background.messages import (
     request_from_json,
     setup_from_json,
 )
+from service.background.stage_watch import StageWatch, TimedKeeper, TimedPlanner
 from service.orders.planned import OrderInputs
 from service.orders.planning import plan_order
 from service.planner import AnyPlanner
@@ -101,15 +102,17 @@ def _within_memory(request: PlanRequest, setup: ChildSetup, planner: AnyPlanner,
 
 
 def _planned(request: PlanRequest, planner: AnyPlanner, keeper: FileKeeper) -> ChildAnswer:
+    watch = StageWatch()
     try:
-        inputs = OrderInputs(
-            tune=keeper.read(request.tune),
-            movement=keeper.read(request.movement),
-            cutter=keeper.read(request.cutter),
-            settings=keeper.read(request.settings),
-            not_good=request.not_good,
-        )
-        planned = plan_order(inputs, planner, keeper)
+        with watch.timing("reading"):
+            inputs = OrderInputs(
+                tune=keeper.read(request.tune),
+                movement=keeper.read(request.movement),
+                cutter=keeper.read(request.cutter),
+                settings=keeper.read(request.settings),
+                not_good=request.not_good,
+            )
+        planned = plan_order(inputs, TimedPlanner(planner, watch), TimedKeeper(keeper, watch))
     except (LayoutError, FileLostError) as fault:
         return ChildAnswer(kind=Kind.REFUSED, reason=str(fault), resident_mib=_resident_mib())
     except StoreError as fault:
@@ -123,7 +126,7 @@ def _planned(request: PlanRequest, planner: AnyPlanner, keeper: FileKeeper) -> C
         )
         trace = traceback.format_exc()
         return ChildAnswer(kind=Kind.REFUSED, reason=reason, trace=trace, resident_mib=_resident_mib())
-    return ChildAnswer(kind=Kind.PLANNED, planned=planned, resident_mib=_resident_mib())
+    return ChildAnswer(kind=Kind.PLANNED, planned=planned, resident_mib=_resident_mib(), took_s=watch.took_s)
 
 
 def _resident_mib() -> float:

@@ -1,7 +1,8 @@
 """What a worker and its child tell each other: JSON, which cannot run anything in whoever reads it."""
 
 import json
-from dataclasses import asdict, dataclass
+from collections.abc import Mapping
+from dataclasses import asdict, dataclass, field
 from enum import StrEnum
 
 from service.orders.planned import PlannedOrder, planned_as_json, planned_from_json
@@ -66,6 +67,7 @@ class ChildAnswer:
         reason: Why there is none, in one line fit to show.
         trace: Where the program itself was at fault, for the log alone.
         resident_mib: MiB of memory that the child holds after it.
+        took_s: Seconds of each stage, by its name.
     """
 
     kind: Kind
@@ -73,6 +75,7 @@ class ChildAnswer:
     reason: str = ""
     trace: str = ""
     resident_mib: float = 0.0
+    took_s: Mapping[str, float] = field(default_factory=dict)
 
 
 def as_json(message: ChildSetup | PlanRequest) -> bytes:

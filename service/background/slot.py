@@ -11,6 +11,7 @@ from service.background.holding import Held, Holding
 from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest
 from service.background.planning_child import ChildEndedError, ChildTooLongError, ChildUnwantedError, PlanningChild
 from service.background.queue import Queue, QueueAwayError
+from service.background.stage_times import note_stage_times
 from service.background.sweeping import Sweep
 from service.orders import taking
 from service.orders.taking import Taken
@@ -130,6 +131,7 @@ class Slot:
             planned = answer.planned
             kept = self._insist(held, lambda: taking.publish(store, taken, planned))
             log.info("planned" if kept else "planned, but not held any more; thrown away", extra=extra)
+            self._note(answer)
         elif answer.kind is Kind.REFUSED:
             self._insist(held, lambda: taking.fail(store, taken, answer.reason))
             log.info("cannot be planned: %s", answer.reason, extra=extra)
@@ -138,6 +140,12 @@ class Slot:
             log.info("handed back: %s", answer.reason, extra=extra)
             if self._shared.stopping.is_set():
                 self._shared.queue.send(taken.order_id)  # others are at work; otherwise it waits for the next sweep
+
+    def _note(self, answer: ChildAnswer) -> None:
+        try:
+            note_stage_times(self._shared.store, answer.took_s)
+        except StoreError as fault:
+            log.warning("how long planning took could not be noted: %s", fault)  # the order itself is published
 
     def _insist(self, held: Held, work: Callable[[], bool]) -> bool:
         """Do it as soon as the database answers: the plan is made, and nobody else can take the order meanwhile."""

@@ -29,7 +29,15 @@ log = logging.getLogger(__name__)
 class Worker:
     """A worker of this process."""
 
-    def __init__(self, parts: Parts, *, slots: int, chores: Sequence[Chore] = (), planner: str = PLANNER) -> None:
+    def __init__(
+        self,
+        parts: Parts,
+        *,
+        slots: int,
+        chores: Sequence[Chore] = (),
+        planner: str = PLANNER,
+        stopping: threading.Event | None = None,
+    ) -> None:
         """Get ready; nothing is started yet.
 
         Args:
@@ -37,6 +45,7 @@ class Worker:
             slots: How many orders are planned at a time.
             chores: What is done beside.
             planner: The module of the computation, by its import path.
+            stopping: Set once the worker stops, for what else shall stop then; None for one of its own.
         """
         work = parts.settings.work
         self._within_s = float(work.stop_within_s)
@@ -56,7 +65,7 @@ class Worker:
                 memory_mib=work.plan_memory_mib,
                 parent_pid=os.getpid(),
             ),
-            stopping=threading.Event(),
+            stopping=stopping or threading.Event(),
             hurrying=threading.Event(),
         )
         self._slots = [

@@ -6,17 +6,16 @@ import logging
 import os
 import sys
 from collections.abc import Callable, Sequence
+from importlib import import_module
 from types import ModuleType
 from typing import NoReturn
 
-from layout import walk
 from layout.errors import DocumentError, LayoutError
 from layout.version import ENGINE_VERSION
-from service.commands import check, cutter, cutters, movement, movements, plan, serve, sheets, trial_piece
 from service.commands.arguments import OneLineParser, Tools, add_command
 from service.commands.errors import BAD_INPUT, INTERRUPTED, PIPE_CLOSED, CommandError
 from service.limits import Limits
-from service.planner import AnyPlanner
+from service.planner import AnyPlanner, TheWalk
 from service.wording import shortened, told_in_short
 
 ABOUT = "Turns a MIDI file into a tune disc: drawings that can be cut and that play, checked before they are cut."
@@ -25,30 +24,25 @@ EXAMPLE = """example:
   discwright plan dance.mid --movement fernhollow-31 --out dance
 
 `discwright COMMAND --help` tells more of each command."""
-COMMANDS: dict[str, ModuleType] = {
-    "plan": plan,
-    "check": check,
-    "sheets": sheets,
-    "trial-piece": trial_piece,
-    "movements": movements,
-    "movement": movement,
-    "cutters": cutters,
-    "cutter": cutter,
-    "serve": serve,
-}
+# In the order in which help lists them. The module of one is imported when it is asked for: most need much that the
+# others do not.
+COMMANDS = (
+    *("plan", "check", "sheets", "trial-piece", "movements", "movement", "cutters", "cutter"),
+    *("serve", "web", "work", "migrate", "check-setup", "keys"),
+)
 
 
 def main(
     argv: Sequence[str] | None = None,
     *,
-    planner: AnyPlanner = walk,
+    planner: AnyPlanner | None = None,
     execute: Callable[[str, list[str]], NoReturn] = os.execv,
 ) -> int:
     """Run the command.
 
     Args:
         argv: The arguments; those of the process by default.
-        planner: The computation.
+        planner: The computation; None for the walk.
         execute: Replaces this process by another program.
 
     Returns:
@@ -60,8 +54,9 @@ def main(
     logging.getLogger("ezdxf").setLevel(logging.CRITICAL)  # its remarks about a damaged file; ours is one line
     limits = Limits()
     try:
-        asked = _parser().parse_args(argv)
-        code: int = asked.run(asked, Tools(planner=planner, limits=limits, execute=execute))
+        words = sys.argv[1:] if argv is None else list(argv)
+        asked = _parser(words).parse_args(words)
+        code: int = asked.run(asked, Tools(planner=planner or TheWalk(), limits=limits, execute=execute))
         sys.stdout.flush()
     except (CommandError, LayoutError) as error:
         sys.stderr.write(f"discwright: {_in_one_line(error, limits)}\n")
@@ -81,7 +76,8 @@ def _in_one_line(error: Exception, limits: Limits) -> str:
     return shortened(str(error), limits.shown_characters)
 
 
-def _parser() -> OneLineParser:
+def _parser(words: Sequence[str]) -> OneLineParser:
+    """The parser of a command line; where its first word is a command, of that command alone."""
     parser = OneLineParser(
         prog="discwright",
         description=ABOUT,
@@ -91,11 +87,18 @@ def _parser() -> OneLineParser:
     )
     parser.add_argument("--version", action="version", version=f"discwright {ENGINE_VERSION}")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND", required=True, parser_class=OneLineParser)
-    for name, command in COMMANDS.items():
+    if words[:1] == ["--version"]:
+        return parser
+    for name in words[:1] if words[:1] and words[0] in COMMANDS else COMMANDS:
+        command = _module_of(name)
         of_command = add_command(commands, name, command.ABOUT, command.EXAMPLE)
         command.add_arguments(of_command)
         of_command.set_defaults(run=command.run)
     return parser
+
+
+def _module_of(name: str) -> ModuleType:
+    return import_module(f"service.commands.{name.replace('-', '_')}")
 
 
 if __name__ == "__main__":

@@ -1,75 +1,86 @@
-"""`discwright serve`: the web service, run by gunicorn."""
+"""`discwright serve`: all of the service on one machine, the web and a worker, started again where they die."""
 
 import argparse
-import os
-import socket
+import shutil
 import sys
 
+from service.access.first_start import first_start
+from service.access.loopback import is_loopback
+from service.commands import web
 from service.commands.arguments import OneLineParser, Tools
 from service.commands.errors import CommandError
-from service.settings import SettingsError, settings_from
+from service.commands.keys import first_key_lines
+from service.commands.output import say
+from service.commands.work import add_slots, checked_slots
+from service.logs import start_logging
+from service.moments import utc_now
+from service.parts import open_parts
+from service.settings import ServiceSettings, SettingsError
+from service.store.faults import StoreError
+from service.supervisor import Program, supervise
 
-ABOUT = "Start the web service and keep serving until Ctrl-C."
+ABOUT = "Start all of the service on this machine, web and worker, and keep it running until Ctrl-C."
 EXAMPLE = """example:
   discwright serve --port 8001
       then  curl --data-binary @dance.mid -H 'Content-Type: audio/midi' -H 'Accept: image/vnd.dxf' \\
                  'http://127.0.0.1:8001/v1/layouts?movement=fernhollow-31' -o dance.dxf
 
-The service has no keys yet: on any host but 127.0.0.1 everyone who reaches the port can use it."""
-ANSWER_WITHIN_S = 120  # s; what a worker may take for one answer before it is replaced
-MOST_PORT = 65535  # ports have 16 bits (RFC 9293)
-MOST_WORKERS = 64  # workers; each is a process of its own
+On a loopback address the first start makes the owner's key and prints it once; everywhere else make one with
+`discwright keys add`. On many machines run `discwright web` and `discwright work` instead."""
 
 
 def add_arguments(parser: OneLineParser) -> None:
     """Add the arguments of this subcommand."""
-    parser.add_argument("--host", default="127.0.0.1", help="the address to listen on (default: %(default)s)")
-    parser.add_argument("--port", type=int, default=8000, help="the port to listen on (default: %(default)s)")
-    parser.add_argument("--workers", type=int, default=2, help="how many requests at a time (default: %(default)s)")
+    web.add_arguments(parser)
+    add_slots(parser)
 
 
 def run(asked: argparse.Namespace, tools: Tools) -> int:
-    """Become the service; returns only where it cannot start.
+    """Serve until told to stop.
 
     Raises:
-        CommandError: A number is out of range, or nothing can listen on that address and port.
+        CommandError: A number is out of range, a setting is wrong, the database cannot be used, or nothing can listen
+            on that address and port.
     """
-    for name, value, most in (("--port", asked.port, MOST_PORT), ("--workers", asked.workers, MOST_WORKERS)):
-        if not 1 <= value <= most:
-            raise CommandError(f"{name} is {value}; it must be a whole number from 1 to {most}")
-    _check_settings()
-    _check_free(asked.host, asked.port)
-    host = f"[{asked.host}]" if ":" in asked.host else asked.host
-    sys.stderr.write(f"serving on http://{host}:{asked.port} until Ctrl-C\n")
-    sys.stderr.flush()
-    tools.execute(
-        sys.executable,
-        [
-            *(sys.executable, "-m", "gunicorn"),
-            *("--bind", f"{host}:{asked.port}"),
-            *("--workers", str(asked.workers)),
-            *("--timeout", str(ANSWER_WITHIN_S)),
-            *("--log-level", "warning"),
-            "--no-control-socket",
-            "service.app:create_app()",
-        ],
-    )
+    wanted, slots = web.web_asked(asked), checked_slots(asked)
+    settings = web.read_settings()
+    with web.listening(wanted) as listener:
+        _open_once(settings, wanted)
+        start_logging(settings.work)
+        counts = web.new_counts()
+        try:
+            return supervise(
+                [
+                    Program(
+                        name="the web",
+                        # It gets the socket itself: while it is started again connections wait, and none is refused.
+                        command=web.gunicorn_command(wanted, f"fd://{listener.fileno()}", settings),
+                        environment=web.web_environment(wanted, counts),
+                        handed_on=(listener.fileno(),),
+                    ),
+                    Program(
+                        name="the worker",
+                        command=[sys.executable, "-m", "service.commands.main", "work", "--slots", str(slots)],
+                    ),
+                ],
+                stop_within_s=settings.work.stop_within_s,
+            )
+        finally:
+            shutil.rmtree(counts, ignore_errors=True)
 
 
-def _check_settings() -> None:
+def _open_once(settings: ServiceSettings, wanted: web.WebAsked) -> None:
+    """See that the database can be used, make the first key where that is due, and say where it serves."""
     try:
-        settings_from(os.environ)
-    except SettingsError as error:
+        parts = open_parts(settings)
+        try:
+            first = first_start(parts.store, utc_now()) if is_loopback(wanted.host) else None
+        finally:
+            parts.store.close()
+    except (SettingsError, StoreError) as error:
         raise CommandError(str(error)) from error
-
-
-def _check_free(host: str, port: int) -> None:
-    try:
-        family, kind, protocol, _, address = socket.getaddrinfo(host, port, type=socket.SOCK_STREAM)[0]
-        with socket.socket(family, kind, protocol) as listener:
-            listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-            listener.bind(address)
-    except OSError as refusal:
-        raise CommandError(
-            f"nothing can listen on {host} port {port}: {refusal.strerror}; choose another --port or --host"
-        ) from refusal
+    if first is not None:
+        say(first_key_lines(first, wanted.address))  # on the standard output: the log, which may be kept, holds no keys
+        sys.stdout.flush()
+    sys.stderr.write(f"serving on {wanted.address} until Ctrl-C\n")
+    sys.stderr.flush()

@@ -4,14 +4,15 @@ import argparse
 import os
 import sys
 
-from service.background.worker import Worker, work_until_told
 from service.commands.arguments import OneLineParser, Tools
 from service.commands.errors import GOOD, CommandError
+from service.logs import start_logging
 from service.parts import open_parts
 from service.settings import MOST_SLOTS, SettingsError, settings_from
 from service.store.faults import StoreError
+from service.working import work
 
-ABOUT = "Plan the orders that the web takes, until Ctrl-C or SIGTERM."
+ABOUT = "Plan the orders that the web takes, and tell hooks of them, until Ctrl-C or SIGTERM."
 EXAMPLE = """example:
   DATABASE_URL=postgresql://discs@db/discs discwright work --slots 4
 
@@ -21,12 +22,29 @@ a worker stops is finished or handed back; what was in hand when it was killed i
 
 def add_arguments(parser: OneLineParser) -> None:
     """Add the arguments of this subcommand."""
+    add_slots(parser)
+
+
+def add_slots(parser: OneLineParser) -> None:
+    """Add --slots."""
     parser.add_argument(
         "--slots",
         type=int,
         default=min(len(os.sched_getaffinity(0)), MOST_SLOTS),
-        help="how many orders at a time, each on a processor of its own (default here: %(default)s)",
+        help="how many orders are planned at a time, each on a processor of its own (default here: %(default)s)",
     )
+
+
+def checked_slots(asked: argparse.Namespace) -> int:
+    """The slots asked for.
+
+    Raises:
+        CommandError: The number is out of range.
+    """
+    slots: int = asked.slots
+    if not 1 <= slots <= MOST_SLOTS:
+        raise CommandError(f"--slots is {slots}; it must be a whole number from 1 to {MOST_SLOTS}")
+    return slots
 
 
 def run(asked: argparse.Namespace, tools: Tools) -> int:
@@ -35,13 +53,14 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     Raises:
         CommandError: A number is out of range, a setting is wrong, or the database cannot be used.
     """
-    if not 1 <= asked.slots <= MOST_SLOTS:
-        raise CommandError(f"--slots is {asked.slots}; it must be a whole number from 1 to {MOST_SLOTS}")
+    slots = checked_slots(asked)
     try:
-        parts = open_parts(settings_from(os.environ))
+        settings = settings_from(os.environ)
+        start_logging(settings.work)
+        parts = open_parts(settings)
     except (SettingsError, StoreError) as error:
         raise CommandError(str(error)) from error
-    work_until_told(Worker(parts, slots=asked.slots), lambda: _say_started(asked.slots))
+    work(parts, slots=slots, say_started=lambda: _say_started(slots))
     return GOOD
 
 

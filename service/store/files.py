@@ -101,6 +101,22 @@ class FileStore:
             if self._files.exists(self._path(digest)):
                 self._files.rm_file(self._path(digest))
 
+    def check(self) -> None:
+        """See that the store is there and takes files; costs one look.
+
+        Raises:
+            StoreBusyError: It is not, or does not.
+        """
+        if self._is_folder:
+            if not os.access(self._root, os.W_OK | os.X_OK):
+                raise StoreBusyError(f"the folder of files, {self._root}, is not there or cannot be written")
+            return
+        bucket = self._root.parts[0]
+        with self._told("the store of files could not be asked"):
+            self._files.invalidate_cache()
+            if not self._files.exists(bucket):
+                raise StoreBusyError(f"the store of files has no bucket {bucket!r}, or does not show it")
+
     def digests(self) -> Iterator[str]:
         """Every file that is there, for a sweep of what nobody holds."""
         with _told("the store of files could not be listed"):

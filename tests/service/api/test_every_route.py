@@ -25,7 +25,7 @@ from service.settings import AccessSettings
 from tests.service.api.guarded import bearing, new_key
 from tests.service.conftest import parts_of
 from tests.service.pricing import PricingPlanner
-from tests.service.shop import TUNE
+from tests.service.shop import TUNE, archive_of
 
 ANY_KEY = Access(scope=None)
 OPEN = Access(scope=None, openness=Openness.ALL, is_counted=False)
@@ -34,10 +34,16 @@ READ, ORDER, RELEASE, ADMIN = (Access(scope=Scope(word)) for word in ("read", "o
 OPEN_AND_MORE = Access(scope=Scope.READ, openness=Openness.ALL, sees_more=True)
 MOVEMENTS = Access(scope=Scope.MOVEMENTS)
 ORDER_OR_LOOPBACK = Access(scope=Scope.ORDER, openness=Openness.ON_LOOPBACK)
+ADMIN_OR_LOOPBACK = Access(scope=Scope.ADMIN, openness=Openness.ON_LOOPBACK)
 # Who may ask for what. A new route stands here too, so that whom it is for is looked at by a second pair of eyes.
 TABLE: dict[str, Access] = {
     "GET /": OPEN,
     "GET /healthz": OPEN,
+    "GET /openapi.json": OPEN,
+    "GET /v1/schemas": OPEN,
+    "GET /v1/schemas/<name>": OPEN,
+    "GET /readyz": OPEN,
+    "GET /metrics": ADMIN_OR_LOOPBACK,
     "GET /problems": OPEN,
     "GET /problems/<name>": OPEN,
     "GET /sign-in/<secret>": COUNTED,
@@ -80,6 +86,11 @@ TABLE: dict[str, Access] = {
     "POST /v1/proofs/<text>/verdict": COUNTED,
     "POST /v1/quotes": ORDER,
     "GET /v1/quotes/<quote_id>": READ,
+    "GET /v1/runs": READ,
+    "POST /v1/runs": ORDER,
+    "GET /v1/runs/<run_id>": READ,
+    "GET /v1/runs/<run_id>/items": READ,
+    "GET /v1/runs/<run_id>/results.zip": READ,
     "GET /v1/events": READ,
     "GET /v1/event-types": OPEN,
     "GET /v1/hooks": READ,
@@ -107,12 +118,14 @@ OWNED = {
     "key_id": "key_" + 32 * "0",
     "order_id": "order_" + 32 * "0",
     "quote_id": "quote_" + 32 * "0",
+    "run_id": "run_" + 32 * "0",
     "hook_id": "hook_" + 32 * "0",
     "delivery_id": "msg_" + 32 * "0",
 }
 LISTS = {
     "GET /v1/keys": "key_id",
     "GET /v1/orders": "order_id",
+    "GET /v1/runs": "run_id",
     "GET /v1/events": "order_id",
     "GET /v1/hooks": "hook_id",
 }
@@ -232,6 +245,8 @@ def made_by(http: FlaskClient, key: NewKey) -> dict[str, str]:
     hook = http.post("/v1/hooks", json={"url": f"https://shop.example/{key.told.id}"}, headers=headers)
     made = {"key_id": key.told.id, "order_id": told(order)["id"], "hook_id": told(hook)["id"]}
     made["quote_id"] = told(quote)["id"]
+    run = {"archive": (BytesIO(archive_of(a=TUNE)), "a.zip"), "run": '{"movements": ["fernhollow-31"]}'}
+    made["run_id"] = told(http.post("/v1/runs", data=run, headers=headers))["id"]
     return {**made, "delivery_id": told(http.post(f"/v1/hooks/{made['hook_id']}/test", headers=headers))["id"]}
 
 

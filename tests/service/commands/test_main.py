@@ -40,7 +40,7 @@ def test_help_ends_with_an_example_of_the_command(command: str, capsys: pytest.C
 
     told = capsys.readouterr().out
     assert end.value.code == 0
-    assert f"  discwright {command}" in told.partition("example:\n")[2]
+    assert f" discwright {command}" in told.partition("example:\n")[2]
     assert max(map(len, told.splitlines())) <= 120
 
 
@@ -97,12 +97,19 @@ def test_an_interrupt_ends_without_a_trace(capsys: pytest.CaptureFixture[str]) -
     assert (code, told.out, told.err) == (130, "", "")
 
 
+@pytest.fixture
+def own_environment(monkeypatch: pytest.MonkeyPatch) -> None:
+    """What `web` sets for the program it becomes is set no more after the test."""
+    for name in ("DISCWRIGHT_ON_LOOPBACK", "PROMETHEUS_MULTIPROC_DIR", "OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS"):
+        monkeypatch.setenv(name, "")
+
+
 class Executed(Exception):
     """Stands for the program that would take over."""
 
 
-def serve(*arguments: str) -> list[str]:
-    """The command line that `serve` turns into."""
+def web(*arguments: str) -> list[str]:
+    """The command line that `web` turns into."""
     seen: list[str] = []
 
     def execute(_: str, command: list[str]) -> None:
@@ -110,7 +117,7 @@ def serve(*arguments: str) -> list[str]:
         raise Executed
 
     with pytest.raises(Executed):
-        main(["serve", *arguments], execute=execute)
+        main(["web", *arguments], execute=execute)
     return seen
 
 
@@ -120,17 +127,33 @@ def free_port() -> int:
         return int(probe.getsockname()[1])
 
 
-def test_serve_becomes_gunicorn_on_the_loopback_address(capsys: pytest.CaptureFixture[str]) -> None:
+def test_web_becomes_gunicorn_on_the_loopback_address(
+    capsys: pytest.CaptureFixture[str], own_environment: None
+) -> None:
     port = free_port()
 
-    command = serve("--port", str(port), "--workers", "3")
+    command = web("--port", str(port), "--workers", "3", "--threads", "5")
 
-    assert command[:5] == [sys.executable, "-m", "gunicorn", "--bind", f"127.0.0.1:{port}"]
-    assert command[command.index("--workers") + 1] == "3"
-    assert command[-1] == "service.app:create_app()"
+    assert command[:5] == [sys.executable, "-m", "gunicorn", "--config", "python:service.web_process"]
+    told = dict(zip(command[5::2], command[6::2], strict=True))
+    # 18 s of 20 s to stop: two are left for processes to end in
+    assert told == {
+        "--bind": f"127.0.0.1:{port}",
+        "--workers": "3",
+        "--threads": "5",
+        "--graceful-timeout": "18",
+    }
+    assert os.environ["DISCWRIGHT_ON_LOOPBACK"] == "yes"
     assert capsys.readouterr().err == f"serving on http://127.0.0.1:{port} until Ctrl-C\n"
 
 
+def test_web_on_another_address_says_that_it_is_not_on_loopback(own_environment: None) -> None:
+    web("--host", "0.0.0.0", "--port", str(free_port()))
+
+    assert os.environ["DISCWRIGHT_ON_LOOPBACK"] == "no"
+
+
+@pytest.mark.parametrize("command", ["serve", "web"])
 @pytest.mark.parametrize(
     ("arguments", "message"),
     [
@@ -138,13 +161,14 @@ def test_serve_becomes_gunicorn_on_the_loopback_address(capsys: pytest.CaptureFi
         (["--port", "65536"], "--port is 65536; it must be"),
         (["--port", "http"], "argument --port: invalid int value: 'http'"),
         (["--workers", "0"], "--workers is 0; it must be a whole number from 1 to 64"),
+        (["--threads", "201"], "--threads is 201; it must be a whole number from 1 to 200"),
         (["--host", "203.0.113.7"], "nothing can listen on 203.0.113.7 port 8000: .*; choose another --port or --host"),
     ],
 )
 def test_an_address_that_cannot_be_served_is_one_line_and_exit_2(
-    discwright: Discwright, capsys: pytest.CaptureFixture[str], arguments: list[str], message: str
+    discwright: Discwright, capsys: pytest.CaptureFixture[str], command: str, arguments: list[str], message: str
 ) -> None:
-    code = discwright("serve", *arguments)
+    code = discwright(command, *arguments)
 
     _match(message, code, capsys)
 

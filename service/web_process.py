@@ -1,0 +1,78 @@
+"""How gunicorn runs the web; it reads this module as its configuration (`--config python:service.web_process`).
+
+The master imports the app once and every worker is a fork of it, so a worker is there at once. What must not be
+shared between processes (connections, threads) is opened by `create_app`, which each worker calls for itself.
+"""
+
+import importlib
+import logging
+import os
+import shutil
+import sys
+import threading
+from pathlib import Path
+from typing import Any
+
+from gunicorn.glogging import Logger
+
+from service.logs import start_logging
+from service.settings import settings_from
+
+COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
+COMPUTATION = ("layout.walk", "layout.sheet_walk", "layout.trial_walk")
+WARM_AFTER_S = 0.5  # s; first the requests that waited for the start
+
+
+class OneLog(Logger):  # type: ignore[misc]
+    """Gunicorn's own lines go where all lines go; a line for each request the app writes itself."""
+
+    def setup(self, cfg: Any) -> None:
+        """Take no place of its own."""
+        self.cfg = cfg
+        self._access_log_enabled = False
+        work = settings_from(os.environ).work
+        start_logging(work)
+        for log in (self.error_log, self.access_log):
+            log.handlers[:] = []
+            log.propagate = True
+        # That it starts and stops its processes is for who looks for a fault.
+        self.error_log.setLevel(logging.DEBUG if work.log_level == "debug" else logging.WARNING)
+
+    def reopen_files(self) -> None:
+        """There are none."""
+
+    def close_on_exec(self) -> None:
+        """There are no files."""
+
+
+# Names that gunicorn knows.
+wsgi_app = "service.app:create_app()"
+worker_class = "gthread"
+logger_class = OneLog
+control_socket_disable = True
+timeout = 120  # s; a worker that gives no sign of life for so long is replaced
+keepalive = 5  # s; longer than a proxy or a client waits between two requests of one task
+
+
+def on_starting(server: Any) -> None:
+    """Import what the workers will need, once for all of them, and see to the folder of their counts."""
+    Path(os.environ[COUNTS_OF_PROCESSES]).mkdir(parents=True, exist_ok=True)
+    importlib.import_module("service.app")
+
+
+def post_worker_init(worker: Any) -> None:
+    """Import the computation as soon as a worker serves, so that the first tune does not wait for it."""
+    warming = threading.Timer(WARM_AFTER_S, _warm)
+    warming.daemon = True
+    warming.start()
+
+
+def on_exit(server: Any) -> None:
+    """Remove the counts."""
+    shutil.rmtree(os.environ[COUNTS_OF_PROCESSES], ignore_errors=True)
+
+
+def _warm() -> None:
+    for name in COMPUTATION:
+        if name not in sys.modules:
+            importlib.import_module(name)
