@@ -55,6 +55,7 @@ class Code(StrEnum):
     FOOT_ON_FORMED = "foot-on-formed"
     PRESS_TOO_WEAK = "press-too-weak"
     LABEL_HIDDEN = "label-hidden"
+    LABEL_MISSING = "label-missing"
     # timing and drive
     TIMING_TOO_COARSE = "timing-too-coarse"
     START_TOO_SHORT = "start-too-short"
