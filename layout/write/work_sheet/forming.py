@@ -87,6 +87,8 @@ def order_of_work(disc: Disc) -> list[str]:
             "A lance cuts and forms in one hit, so its edges cannot be deburred first: keep punch and die sharp.",
             "Deburr rim and holes; take out every loose slug.",
         ]
+    elif cutter.kind == "punch-press":
+        steps += ["Strike slots and holes, the rim last.", f"Take out every slug. Deburr {_burr(cutter)}."]
     else:
         held = "" if cutter.bridges is None else f" Break its {cutter.bridges.count} bridges and stone the stubs flush."
         steps += [f"Cut; take the disc out when it is cool.{held}", f"Take out every slug. Deburr {_burr(cutter)}."]

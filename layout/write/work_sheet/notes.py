@@ -80,14 +80,15 @@ def _bar(paper: Paper, area: Area, disc: Disc) -> Area:
 
 
 def _counted(plan: CutPlan) -> Iterator[Row]:
-    """How many outlines, circles and points each layer holds."""
+    """How many outlines, circles and points each layer holds; a rim held by bridges is one in so many pieces."""
     counts: Counter[str] = Counter()
     for entity in plan.disc.entities:
         counts[entity.layer] += _count(entity)
     for layer, what in _WHAT.items():
         if counts[layer]:
             tool = f", tool {plan.tool}" if layer == "HITS" and plan.tool else ""
-            yield what, f"{counts[layer]}{tool}"
+            in_pieces = layer == "RIM" and counts[layer] > 1
+            yield what, f"1, in {counts[layer]} pieces" if in_pieces else f"{counts[layer]}{tool}"
     yield "projections", f"{len(plan.order)}"
 
 
@@ -105,7 +106,7 @@ def _taken(making: Making) -> Iterator[Row]:
     )
     yield from ((name, f"{length_mm / _KILO:.3f} m") for name, length_mm in lengths if length_mm)
     counts = (("pierced", making.pierce_count), ("struck", making.hit_count))
-    yield from ((name, f"{count} times") for name, count in counts if count)
+    yield from ((name, "once" if count == 1 else f"{count} times") for name, count in counts if count)
     forces = (("force of a hit", making.hit_force_n), ("stripping", making.stripping_force_n))
     yield from ((name, f"{force_n / _KILO:.2f} kN") for name, force_n in forces if force_n is not None)
     if making.time_s is not None:

@@ -25,6 +25,7 @@ from tests.layout.write.examples import (
     ONE_FOLD,
     OPEN_LASER,
     PRESS,
+    SLOTS_ON_A_PRESS,
     TARNLIGHT,
     THREE_LANCES,
     THREE_SLOTS,
@@ -218,6 +219,32 @@ def test_deburring_comes_before_folding_and_stays_on_the_burr_side() -> None:
     assert "burr on the star side" in sided
 
 
+def test_a_press_strikes_slots_and_cuts_nothing_hot() -> None:
+    struck, cut = (words_of(sheet_of(disc)) for disc in (SLOTS_ON_A_PRESS, THREE_SLOTS))
+
+    assert "2. Strike slots and holes, the rim last. 3. Take out every slug. Deburr both sides." in struck
+    assert "when it is cool" not in struck
+    assert "2. Cut; take the disc out when it is cool." in cut
+
+
+def test_a_rim_that_bridges_hold_is_one_in_pieces() -> None:
+    bridged = Cutter.model_validate(LASER.model_dump(mode="json") | {"bridges": {"count": 4, "width_mm": 0.6}})
+
+    whole, held = (words_of(sheet_of(disc_of(FERNHOLLOW, cutter, [(5, 90.0)]))) for cutter in (LASER, bridged))
+
+    assert "holes 4 rim 1 projections 1" in whole
+    assert "holes 4 rim 1, in 4 pieces projections 1" in held
+
+
+def test_the_index_mark_is_looked_for_on_the_side_that_is_marked() -> None:
+    barb = "up, the index mark's barb points the way the disc turns."
+
+    from_label, from_star = (words_of(sheet_of(disc)) for disc in (THREE_SLOTS, SLOTS_ON_A_PRESS))
+
+    assert f"Label side {barb}" in from_label
+    assert f"Star side {barb}" in from_star
+
+
 def test_the_height_has_a_gauge_for_each_end_of_its_band() -> None:
     # 1.41 ± 0.08: 1.33 and 1.49. A tab of 1.41 that leans by asin(0.05/1.41) = 2.03° has its tip 0.05 mm off.
     words = words_of(sheet_of(ONE_FOLD))
@@ -355,6 +382,7 @@ def test_forces_of_a_press_are_told_where_they_are_known() -> None:
 
     assert "struck 3 times force of a hit 2.48 kN stripping 0.50 kN machine time 12.0 s" in words
     assert "price" not in words
+    assert "struck once" in words_of(sheet_of(THREE_LANCES, making=Making(hit_count=1)))
 
 
 def test_what_nobody_stated_is_named_and_nothing_is_guessed() -> None:
