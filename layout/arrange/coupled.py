@@ -1,7 +1,8 @@
 """The best choice of plucks that hang together by more than time on one track: an integer program.
 
 Chains of nudges longer than the program's rows know are looked for in every solution, and
-forbidden where they are found, until a solution keeps them all.
+forbidden where they are found, until a solution keeps them all. So are loads: the program reckons in
+floating point, and teeth a million times as stiff as others are lost in its rounding.
 """
 
 from collections import defaultdict
@@ -62,12 +63,12 @@ def best_coupled(
         if answer.ones is None:
             return Coupled(spots=None, worth=0, bound=columns.most if bound is None else bound)
         spots = columns.spots_of(answer.ones)
-        broken = overruns(problem, spots)
-        if not broken:
+        cuts = [columns.cut(one) for one in overruns(problem, spots)] + columns.load_cuts(spots)
+        if not cuts:
             return Coupled(spots=spots, worth=worth_of(problem, spots), bound=bound)
         if budget.spent:
             return Coupled(spots=None, worth=0, bound=columns.most if bound is None else bound)
-        program.add([columns.cut(one) for one in broken])
+        program.add(cuts)
 
 
 def _lower(bound: int | None, answer: Answer) -> int | None:
