@@ -3,16 +3,13 @@
 Good, quick and not the best: where a search for the best begins, and what it falls back on.
 """
 
-from bisect import bisect_left, insort
 from collections import defaultdict
 from collections.abc import Sequence
 
 import numpy as np
 
-from layout.arrange.broken import breaches
-from layout.arrange.loads import overloads, piled_up
-from layout.arrange.moments_kept import Overrun, moments_kept
 from layout.arrange.problem import NO_PLUCK, Problem
+from layout.arrange.put_down import LoadsStanding, MomentsStanding
 from layout.mechanics.arrays import IntArray
 
 
@@ -26,7 +23,7 @@ def fitted(problem: Problem, plucks: IntArray, preferred: Sequence[int]) -> tupl
         plucks: Rising.
         preferred: Spots to keep where they fit.
     """
-    fitting = _Fitting(problem)
+    fitting = _Fitting(problem, plucks)
     must = problem.must_sound[plucks]
     wanted = set(preferred)
     for pluck in plucks[must].tolist():
@@ -49,9 +46,16 @@ def _heaviest(problem: Problem, pluck: int) -> int:
 class _Fitting:
     """The spots put down so far, and whether one more fits."""
 
-    def __init__(self, problem: Problem) -> None:
+    def __init__(self, problem: Problem, plucks: IntArray) -> None:
         self._problem = problem
-        self._on_track: dict[int, list[int]] = defaultdict(list)
+        self._moments = MomentsStanding(problem)
+        self._loads = None
+        if problem.drive is not None:
+            self._loads = LoadsStanding(problem, problem.drive, np.flatnonzero(np.isin(problem.pluck, plucks)))
+        self._piled: dict[int, list[tuple[int, ...]]] = defaultdict(list)
+        for pile in problem.piled:
+            for spot in pile:
+                self._piled[spot].append(pile)
         self._spot_of: dict[int, int] = {}
         self._spread_of: dict[int, int] = {}  # by chord
 
@@ -70,47 +74,28 @@ class _Fitting:
         for spot in sorted(
             spots, key=lambda one: (one not in wanted, int(problem.spread[one]), -int(problem.worth[one]))
         ):
-            if self._fits(spot):
-                insort(self._on_track[int(problem.track[spot])], spot)
-                self._spot_of[pluck] = spot
-                self._spread_of[int(problem.chord[pluck])] = int(problem.spread[spot])
+            if self._put(pluck, spot):
                 return True
         return False
 
-    def _fits(self, spot: int) -> bool:
-        problem = self._problem
-        spread = int(problem.spread[spot])
-        if self._spread_of.get(int(problem.chord[problem.pluck[spot]]), spread) != spread:
+    def _put(self, pluck: int, spot: int) -> bool:
+        chord, spread = int(self._problem.chord[pluck]), int(self._problem.spread[spot])
+        if self._spread_of.get(chord, spread) != spread or self._piles_up(pluck, spot):
             return False
-        if self._is_too_near(spot):
+        if self._moments.is_in_the_way(spot) or (self._loads is not None and not self._loads.put(spot)):
             return False
-        company = problem.company[int(problem.track[spot])]
-        there = [one for track in company for one in self._on_track[track]]
-        if isinstance(moments_kept(problem, [*there, spot]), Overrun):
+        if not self._moments.put(spot):
+            if self._loads is not None:
+                self._loads.take(spot)
             return False
-        return not breaches(problem, [*there, spot]) and self._carries(spot)
+        self._spot_of[pluck] = spot
+        self._spread_of[chord] = spread
+        return True
 
-    def _is_too_near(self, spot: int) -> bool:
-        """Whether a neighbour on the track is nearer than any nudging makes up for: a quick answer, mostly enough."""
-        problem = self._problem
-        row = self._on_track[int(problem.track[spot])]
-        place = bisect_left(row, spot)
-        before = row[place - 1] if place else None
-        after = row[place] if place < len(row) else None
+    def _piles_up(self, pluck: int, spot: int) -> bool:
+        """Whether with the spot every pluck of a pile would have its spot in it."""
+        of = self._problem.pluck
         return any(
-            earlier is not None
-            and later is not None
-            and problem.latest_ns[later] - problem.earliest_ns[earlier] < problem.least_ns[earlier]
-            for earlier, later in ((before, spot), (spot, after))
+            all(self._spot_of.get(other) in pile for other in {int(of[one]) for one in pile} - {pluck})
+            for pile in self._piled.get(spot, ())
         )
-
-    def _carries(self, spot: int) -> bool:
-        """Whether the drive carries one more pluck."""
-        problem = self._problem
-        if problem.drive is None:
-            return True
-        near_ns = 2 * problem.drive.widest_ns
-        standing = np.array([*self._spot_of.values(), spot], dtype=np.int64)
-        apart_ns = np.abs(problem.asked_ns[standing] - problem.asked_ns[spot])
-        near = (apart_ns < near_ns) | (problem.turn_ns - apart_ns < near_ns)
-        return not overloads(problem, standing[near]) and not piled_up(problem, standing)

@@ -8,11 +8,20 @@ from hypothesis import strategies as st
 
 from layout.arrange.budget import Budget
 from layout.arrange.coupled import best_coupled
+from layout.arrange.fitting import fitted
 from layout.arrange.loads import hard_moments, heavy_moments, lifted_count, overloads
 from layout.arrange.problem import Drive, Lift, Problem
 from layout.arrange.solving import Solved, Solving
 from tests.layout.arrange.by_hand import MS, Asked, drive_of, problem_with
-from tests.layout.arrange.random_problems import best_worth, chosen, keeps_the_rules, problems, worth_of_choice
+from tests.layout.arrange.random_problems import (
+    best_worth,
+    chosen,
+    is_complete,
+    keeps_the_rules,
+    problems,
+    spots_of,
+    worth_of_choice,
+)
 
 WILD_LOADS = (1, 40, 10**6, 10**12)  # thousandths of a N mm; the last is 2000 N/mm lifted by 2000 mm on a large disc
 WILD_WINDOWS_MS = (0.01, 20, 70_000, 3 * 10**6)  # of turns of some seconds to a minute
@@ -102,3 +111,20 @@ def test_the_best_choice_is_found_and_kept_within_the_rules_whatever_the_teeth(p
     assert worth_of_choice(solving.problem, spots) == solved.worth <= solved.bound
     if not solving.problem.piled:
         assert solved.worth == best_worth(solving.problem)
+
+
+@settings(max_examples=100, deadline=None, derandomize=True)
+@given(wild_problems())
+def test_what_is_put_down_by_hand_keeps_the_rules_whatever_the_teeth(problem: Problem) -> None:
+    problem = replace(problem, must_sound=np.zeros(problem.pluck_count, dtype=np.bool_))
+
+    spots = fitted(problem, np.arange(problem.pluck_count), ())
+
+    assert spots is not None
+    standing = chosen(problem, spots)
+    assert keeps_the_rules(problem, standing)
+    taken = {spot.pluck for spot in standing}
+    for pluck in set(range(problem.pluck_count)) - taken:
+        for spot in spots_of(problem, pluck):
+            one_more = sorted([*standing, spot], key=lambda one: one.pluck)
+            assert not (is_complete(problem, one_more) and keeps_the_rules(problem, one_more))
