@@ -38,6 +38,16 @@ def read_posted(request: Request, query: Query, limits: Limits) -> Inputs:
     for name in DOCUMENT_PARTS:
         if len(parts.get(name, b"")) > limits.document_bytes:
             raise too_large(limits.document_bytes, f"the part {name}")
+    movement, cutter = machines_of(query, parts)
+    return Inputs(tune=tune, movement=movement, cutter=cutter, settings=parts.get("settings", b"{}"))
+
+
+def machines_of(query: Query, parts: dict[str, bytes]) -> tuple[Source, Source]:
+    """The movement and the cutter that a request names or brings; the default cutter where it does neither.
+
+    Raises:
+        ProblemError: A movement is missing; one of the two is given twice.
+    """
     movement = source_of("movement", query.movement, parts.get("movement"))
     if movement is None:
         raise ProblemError(
@@ -45,8 +55,7 @@ def read_posted(request: Request, query: Query, limits: Limits) -> Inputs:
             detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
             more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
         )
-    cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
-    return Inputs(tune=tune, movement=movement, cutter=cutter, settings=parts.get("settings", b"{}"))
+    return movement, source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
 
 
 def _parts(request: Request, limits: Limits) -> dict[str, bytes]:

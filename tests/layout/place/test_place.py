@@ -1,4 +1,5 @@
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -23,6 +24,19 @@ def test_no_plucks_give_a_disc_without_projections() -> None:
 
     assert disc.projection_count == 0
     assert len(play(disc).sounds_s) == 0
+
+
+def test_the_metal_left_of_a_disc_is_worked_out_once_and_of_another_disc_anew() -> None:
+    one = disc_of(PLAIN, [(1, 1.0), (3, 20.0)])
+    other = replace(one, edge_angle_rad=np.zeros(2))
+
+    assert one.metal_left is one.metal_left
+    assert one.metal_left is not None
+    assert other.metal_left is not None
+    # Both openings on one line leave less of it than one alone, and as much of the rings.
+    assert other.metal_left.line_mm < one.metal_left.line_mm - 1
+    assert other.metal_left.ring_mm == pytest.approx(one.metal_left.ring_mm, abs=1e-4)
+    assert disc_of(PLAIN, []).metal_left is None
 
 
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)

@@ -376,6 +376,7 @@ def test_the_order_number_stands_in_the_title_block_and_room_is_left_where_there
     [
         ("Été à l'orée – “naïve”", "Été à l'orée – “naïve”"),
         ("Żółta łódź", "Zólta lódz"),  # only ó is in code page 1252
+        ("Sáŋat ok Đorđe", "Sángat ok Dorde"),  # by their names: eng is like ng, a letter with stroke like it
         ("夜の歌", "(in letters this sheet cannot show: see layout.json)"),
         ("Waltz ♪ in 3", "Waltz ? in 3"),
         ("two\nlines\tand\x00more", "two lines and more"),
