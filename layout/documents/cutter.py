@@ -76,21 +76,36 @@ class Tool(Part):
 
     A lance cuts three sides of its footprint and forms the tab in the same hit. A slot tool's
     footprint has round ends. `edge_ahead_mm` is how far the working edge lies ahead of the
-    strike point, in the direction of travel (negative: behind it).
+    strike point, in the direction of travel (negative: behind it). A hole tool strikes the blank's own
+    holes and slots; it has round ends whichever way it is longer, is round where both sizes are equal,
+    and has no working edge.
     """
 
     tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$")]
     title: Title
-    makes: Literal["lance", "slot"]
+    makes: Literal["lance", "slot", "hole"]
     footprint_length_mm: Length
     footprint_width_mm: Length
-    edge_ahead_mm: Offset
+    edge_ahead_mm: Offset = 0.0
     tab_width_mm: Length | None = None
     tab_depth_mm: Length | None = None
     foot: Foot | None = None
 
     @model_validator(mode="after")
+    def _hole_tools_only_strike_out(self) -> Self:
+        if self.makes != "hole":
+            if "edge_ahead_mm" not in self.model_fields_set:
+                raise ValueError(f"{self.makes} tool {self.tool} needs edge_ahead_mm")
+        elif self.edge_ahead_mm != 0:
+            raise ValueError(f"hole tool {self.tool} has no working edge; leave edge_ahead_mm out")
+        elif self.tab_width_mm is not None or self.tab_depth_mm is not None:
+            raise ValueError(f"hole tool {self.tool} forms no tab; leave tab_width_mm and tab_depth_mm out")
+        return self
+
+    @model_validator(mode="after")
     def _fields_of_its_kind(self) -> Self:
+        if self.makes == "hole":
+            return self
         if self.makes == "lance":
             if self.tab_width_mm is None or self.tab_depth_mm is None:
                 raise ValueError(f"lance tool {self.tool} needs tab_width_mm and tab_depth_mm")

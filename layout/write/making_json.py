@@ -4,7 +4,7 @@ import math
 from dataclasses import asdict
 from typing import Any
 
-from layout.making.making import Making, PriceLine
+from layout.making.making import Making, PriceLine, ToolWork
 from layout.version import ENGINE_VERSION
 from layout.write.json_lines import json_lines
 
@@ -14,7 +14,7 @@ DECIMALS_KG = 9  # of a kilogram: a microgram
 
 
 def write_making(making: Making, fingerprint: str) -> bytes:
-    """The making as UTF-8 JSON, one line of the price to a line.
+    """The making as UTF-8 JSON, one line of the price, or one tool, to a line.
 
     What a figure means stands at layout.making.making. One that cannot be told is null, and `not_stated` names the
     fields of the documents it needs. Amounts, rates and quantities of the price are text, since they are decimal
@@ -39,6 +39,9 @@ def write_making(making: Making, fingerprint: str) -> bytes:
             "hit_count": making.hit_count,
             "hit_force_n": _rounded(making.hit_force_n),
             "stripping_force_n": _rounded(making.stripping_force_n),
+            "press_force_n": _rounded(making.press_force_n),
+            "tool_change_count": making.tool_change_count,
+            "tools": [_tool(work) for work in making.tools],
             "fold_to_deg": _rounded(None if making.fold_to_rad is None else math.degrees(making.fold_to_rad)),
             "blank_mass_kg": _rounded(making.blank_mass_kg, DECIMALS_KG),
             "disc_mass_kg": _rounded(making.disc_mass_kg, DECIMALS_KG),
@@ -52,6 +55,15 @@ def write_making(making: Making, fingerprint: str) -> bytes:
             "not_counted": list(making.not_counted),
         }
     )
+
+
+def _tool(work: ToolWork) -> dict[str, Any]:
+    return {
+        "tool": work.tool,
+        "hit_count": work.hit_count,
+        "hit_force_n": _rounded(work.hit_force_n),
+        "press_force_n": _rounded(work.press_force_n),
+    }
 
 
 def _line(line: PriceLine) -> dict[str, Any]:

@@ -187,7 +187,7 @@ def test_outlines_stand_in_the_order_the_plan_names() -> None:
         # Lances are formed hits, and formed hits come last (common practice): after the holes.
         (SHIPPED[0], PRESS, ["MARKS", "HOLES", "HITS", "RIM"]),
         (SHIPPED[2], LASER, ["MARKS", "SLOTS", "HOLES", "RIM"]),
-        (SHIPPED[2], PRESS, ["MARKS", "HITS", "HOLES", "RIM"]),
+        (SHIPPED[2], PRESS, ["MARKS", "HOLES", "HITS", "RIM"]),
     ],
 )
 def test_marks_come_first_then_inside_before_outside_and_the_rim_last(

@@ -51,6 +51,7 @@ class DryPress:
     _millimetres: bool = False
     _absolute: bool = False
     _ended: bool = False
+    _moved: bool = False
     _last_number: int = 0
 
     def run(self, program: bytes) -> list[Strike]:
@@ -107,7 +108,9 @@ class DryPress:
             raise Alarm("a move without G0, millimetres and G90 before it")
         self.slide_mm = moves.get("X", self.slide_mm)
         turn_deg = moves.get("C", self.table_deg) - self.table_deg
-        self.greatest_turn_deg = max(self.greatest_turn_deg, abs(turn_deg)) if self.strikes else 0.0
+        if self._moved:  # the first move starts from wherever the table stands
+            self.greatest_turn_deg = max(self.greatest_turn_deg, abs(turn_deg))
+        self._moved = True
         if turn_deg:
             self.turned = 1 if turn_deg > 0 else -1
         self.table_deg += turn_deg
