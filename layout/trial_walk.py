@@ -6,9 +6,10 @@ from layout.trial import TrialPiece, trial_piece
 from layout.write import write_dxf
 from layout.write.trial_json import write_trial_json
 from layout.write.trial_sheet import write_trial_sheet
+from layout.write.trial_svg import write_trial_svg
 
 CUTTING_FILE = "trial-piece.dxf"
-TRIAL_FILES = (CUTTING_FILE, "measure.pdf", "trial-piece.json")
+TRIAL_FILES = (CUTTING_FILE, "trial-piece.svg", "measure.pdf", "trial-piece.json")
 
 
 def plan_trial(movement: Movement, cutter: Cutter) -> TrialPiece:
@@ -30,5 +31,10 @@ def trial_files(movement: Movement, cutter: Cutter) -> dict[str, bytes]:
         DocumentError: The cutter cannot make the movement's projections.
     """
     piece = plan_trial(movement, cutter)
-    files = (write_dxf(piece.drawing, cutter), write_trial_sheet(piece), write_trial_json(piece))
+    files = (
+        write_dxf(piece.drawing, cutter),
+        write_trial_svg(piece),
+        write_trial_sheet(piece),
+        write_trial_json(piece),
+    )
     return dict(zip(TRIAL_FILES, files, strict=True))

@@ -47,7 +47,7 @@ def plan_piece(drawing: Drawing, movement: Movement, cutter: Cutter) -> PieceCut
     """The cuts of a piece of a movement's disc, by the rules of the disc.
 
     A laser's openings follow one another on a short round trip, and two with less than HOT_WEB_MM of metal between
-    them never directly, where that can be helped; a press's hits as on a disc, formed hits after the holes. Holes
+    them never directly, where that can be helped; a press's hits as on a disc, after the holes. Holes
     and outline have the leads and bridges the cutter asks for; openings have leads alone, since what falls out
     of them is to be seen falling.
 
@@ -65,7 +65,8 @@ def plan_piece(drawing: Drawing, movement: Movement, cutter: Cutter) -> PieceCut
     blank = [mirrored(entity) if mirror else entity for entity in holes(movement)]
     holed = [part for hole in blank for part in with_bridges(as_the_beam_runs(hole, cutter), cutter)]
     beams = [as_the_beam_runs(entity, cutter) for entity in ordered]
-    inner = [*holed, *beams] if pattern_of(movement, cutter).making == "lance" else [*beams, *holed]
+    # As on a disc: a press strikes holes first, so that none is struck beside formed metal (common practice).
+    inner = [*holed, *beams] if cutter.kind == "punch-press" else [*beams, *holed]
     outline = [as_the_beam_runs(entity, cutter) for entity in drawing.entities if entity.layer == "RIM"]
     rim = [part for entity in outline if isinstance(entity, Outlines) for part in _with_bridges(entity, cutter)]
     led_in = [part for entity in (*inner, *rim) for part in with_leads(entity, cutter)]

@@ -70,6 +70,7 @@ class TrialPiece:
         cutter_id: The cutter that makes it.
         material: Of the sheet.
         thickness_mm: Of the sheet.
+        disc_diameter_mm: Of the disc it is a sector of.
         drawn_from: The side the drawing shows.
         edges: What the drawing's outlines are: finished edges, or the beam's own lines.
         drawing: What is cut and marked, the outline last.
@@ -86,6 +87,7 @@ class TrialPiece:
     cutter_id: str
     material: str
     thickness_mm: float
+    disc_diameter_mm: float
     drawn_from: Literal["label-side", "star-side"]
     edges: str
     drawing: Drawing

@@ -73,6 +73,7 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
         cutter_id=cutter.id,
         material=movement.disc.material,
         thickness_mm=movement.disc.thickness_mm,
+        disc_diameter_mm=movement.disc.outer_diameter_mm,
         drawn_from=cutter.drawn_from,
         edges=wording.edge_words(cutter),
         drawing=Drawing(

@@ -43,12 +43,13 @@ def layer_groups(plan: CutPlan, page: Page) -> tuple[list[Group], list[Group]]:
         for entity in drawing.entities:
             if (entity.layer in _FROM_RECORD) is wanted:
                 drawn.setdefault(entity.layer, []).append(entity)
-    groups = {layer: _layer_group(layer, drawn[layer], page) for layer in LAYER_STYLES if layer in drawn}
+    groups = {layer: layer_group(layer, drawn[layer], page) for layer in LAYER_STYLES if layer in drawn}
     above = [groups.pop(layer) for layer in OVER_EDGES if layer in groups]
     return list(groups.values()), above
 
 
-def _layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
+def layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
+    """The group of one layer, named as it in small letters; empty but for its title without entities."""
     style = LAYER_STYLES[layer]
     group = Group(
         id=layer.lower(),

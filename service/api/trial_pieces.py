@@ -8,7 +8,7 @@ from flask import Blueprint, Request, Response, request
 
 from layout.documents import Cutter, Movement, shipped_movement_ids
 from layout.trial_walk import trial_files
-from service.api.answers import JSON_MEDIA_TYPE, json_response
+from service.api.answers import JSON_MEDIA_TYPE, ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.failures import too_large
 from service.api.multipart import parts_of
@@ -20,11 +20,12 @@ from service.limits import Limits
 
 FORM_MEDIA_TYPE = "multipart/form-data"
 DOCUMENT_PARTS = ("movement", "cutter")
-ALL_FILES = "trial-piece.zip"
+ALL_FILES, PICTURE = "trial-piece.zip", "trial-piece.svg"
 # What a POST can answer with, by media type; the first where the client does not mind.
 ANSWERS = {
     JSON_MEDIA_TYPE: "trial-piece.json",
     "image/vnd.dxf": "trial-piece.dxf",
+    "image/svg+xml": PICTURE,
     "application/pdf": "measure.pdf",
     ZIP_MEDIA_TYPE: ALL_FILES,
 }
@@ -69,7 +70,11 @@ def _answer(asked: _Asked, files: Mapping[str, bytes], file_name: str) -> Respon
         content = files[file_name]
     media_type = next(media_type for media_type, name in ANSWERS.items() if name == file_name)
     response = Response(content, content_type=media_type)
-    response.headers["Content-Disposition"] = f'attachment; filename="{_saved_as(asked, file_name)}"'
+    how = "attachment"
+    if file_name == PICTURE:
+        response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
+        how = "inline"
+    response.headers["Content-Disposition"] = f'{how}; filename="{_saved_as(asked, file_name)}"'
     response.headers["Cache-Control"] = "no-cache"
     return response
 
