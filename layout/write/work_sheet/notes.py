@@ -20,6 +20,7 @@ _SECONDS_PER_MINUTE = 60
 _KILO = 1000
 _WHAT = {"SLITS": "slits", "SLOTS": "slots", "HITS": "hits", "HOLES": "holes", "RIM": "rim", "LEADS": "lead-ins"}
 _MOST_NOT_STATED_LINES = 8
+_MOST_NOT_COUNTED_LINES = 6
 
 
 def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: Making | None) -> Area:
@@ -39,7 +40,8 @@ def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: M
         missing = f"Not stated, so not told: {', '.join(making.not_stated)}."
         area = written(paper, area, missing, SMALL, most_lines=_MOST_NOT_STATED_LINES)
     if making.not_counted:
-        area = written(paper, area, f"Not counted in time and price: {', '.join(making.not_counted)}.", SMALL)
+        left_out = f"Not counted in time and price: {', '.join(making.not_counted)}."
+        area = written(paper, area, left_out, SMALL, most_lines=_MOST_NOT_COUNTED_LINES)
     return area
 
 
@@ -109,6 +111,9 @@ def _taken(making: Making) -> Iterator[Row]:
     yield from ((name, "once" if count == 1 else f"{count} times") for name, count in counts if count)
     forces = (("force of a hit", making.hit_force_n), ("stripping", making.stripping_force_n))
     yield from ((name, f"{force_n / _KILO:.2f} kN") for name, force_n in forces if force_n is not None)
+    if making.press_force_n is not None:
+        most = max(making.tools, key=lambda work: work.press_force_n or 0.0)
+        yield "press force", f"{making.press_force_n / _KILO:.2f} kN for {most.tool}: hit and stripping"
     if making.time_s is not None:
         yield "machine time", _minutes(making.time_s)
     masses = (("mass of blank", making.blank_mass_kg), ("mass of disc", making.disc_mass_kg))

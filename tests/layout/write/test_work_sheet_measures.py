@@ -375,16 +375,6 @@ def test_what_making_takes_is_told_in_full() -> None:
     assert "Not stated" not in words
 
 
-def test_forces_of_a_press_are_told_where_they_are_known() -> None:
-    struck = Making(hit_count=3, hit_force_n=2484.0, stripping_force_n=496.8, time_s=12.04)
-
-    words = words_of(sheet_of(THREE_LANCES, making=struck))
-
-    assert "struck 3 times force of a hit 2.48 kN stripping 0.50 kN machine time 12.0 s" in words
-    assert "price" not in words
-    assert "struck once" in words_of(sheet_of(THREE_LANCES, making=Making(hit_count=1)))
-
-
 def test_what_nobody_stated_is_named_and_nothing_is_guessed() -> None:
     unstated = Making(not_stated=("cutter.feeds.cut_mm_per_s", "cutter.rates"))
 
