@@ -12,11 +12,14 @@ from layout.cut.leads import with_leads
 from layout.cut.marks import index_mark
 from layout.cut.mirroring import mirrored, mirrored_points_mm
 from layout.cut.path import cutting_order, path_of
-from layout.cut.plan import CutPlan, Drawing, Entity, Outlines
+from layout.cut.plan import CutPath, CutPlan, Drawing, Entity, Outlines, ToolHits
 from layout.cut.projections import cut_projections, formed_projections, struck_at_mm
 from layout.cut.room import Rooms
+from layout.cut.slugs import with_held_slugs
+from layout.cut.striking import strike_path, struck_holes
 from layout.cut.wording import Words, head_lines, inscriptions
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.hole_hits import not_struck
 from layout.place.disc import Disc
 
 
@@ -34,9 +37,9 @@ def plan_cuts(
     What is marked comes first, while the blank lies still; then inside before outside: projections,
     feature holes, centre hole; the rim last, since it sets the disc free. Projections follow one
     another so that the machine travels little, on a laser also so that it does not heat one place.
-    Lances come after the holes, so that no hole is struck beside formed metal (common practice:
-    formed hits last). Drawings from the star side are mirrored in Y, but for the lettering, which reads
-    right on the side drawn.
+    A press strikes the holes that one of its tools makes, and strikes them first, so that none is struck
+    beside formed metal (common practice: formed hits last). Drawings from the star side are mirrored in
+    Y, but for the lettering, which reads right on the side drawn.
 
     Args:
         disc: The disc; one without projections gives the bare blank.
@@ -72,10 +75,26 @@ def plan_cuts(
         disc=drawings[0],
         record=drawings[1],
         order=order,
-        at_mm=at_mm if mirror > 0 else mirrored_points_mm(at_mm),
+        at_mm=_points_as_drawn_mm(at_mm, mirror),
         tool=disc.pattern.tool,
-        path=path_of(disc, drawings[0], order),
+        path=_path(disc, drawings[0], order),
+        order_number=order_number,
+        hole_hits=tuple(
+            ToolHits(tool=hits.tool.tool, at_mm=_points_as_drawn_mm(hits.at_mm, mirror)) for hits in struck_holes(disc)
+        ),
+        not_struck=not_struck(disc.movement, disc.cutter),
     )
+
+
+def _path(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
+    path = path_of(disc, drawing, order)
+    if disc.cutter.kind == "laser":
+        return path
+    return replace(path, hit_count=strike_path(disc, order).hit_count)
+
+
+def _points_as_drawn_mm(points_mm: FloatArray, mirror: int) -> FloatArray:
+    return points_mm if mirror > 0 else mirrored_points_mm(points_mm)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -98,9 +117,10 @@ def _marking(disc: Disc, mirror: int) -> _Marking:
 
 def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
     projections, blank = cut_projections(disc, order), holes(disc.movement)
-    inner = (*blank, *projections) if disc.pattern.making == "lance" else (*projections, *blank)
+    inner = (*blank, *projections) if disc.cutter.kind == "punch-press" else (*projections, *blank)
     drawn = (as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement)))
-    held = (part for entity in drawn for part in with_bridges(entity, disc.cutter))
+    slugs_held = (part for entity in drawn for part in with_held_slugs(entity, disc))
+    held = (part for entity in slugs_held for part in with_bridges(entity, disc.cutter))
     return tuple(led_in for entity in held for led_in in with_leads(entity, disc.cutter))
 
 

@@ -7,11 +7,11 @@ from svgwrite.masking import ClipPath
 from svgwrite.path import Path
 from svgwrite.shapes import Circle
 
-from layout.cut.plan import CutPlan, Entity, LayerName
+from layout.cut.plan import CutPlan, Entity, LayerName, Outlines
 from layout.mechanics.arrays import FloatArray
 from layout.place.disc import Disc
 from layout.write.svg_page import Page, short
-from layout.write.svg_paths import circles, joined_data, lines_data, path_data
+from layout.write.svg_paths import area_data, circles, lines_data, path_data
 from layout.write.svg_style import BLACK, EMPHASIS_WIDTH, LAYER_STYLES, OVER_EDGES
 
 _FROM_RECORD = ("AFTER_FORMING", "FOLDS", "TRACKS")  # all else is shown as it is cut
@@ -63,9 +63,9 @@ def layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
     )
     group.elements.append(Title(style.title))
     data = path_data(entities)
-    if data and layer == "RIM" and not data.endswith("Z"):
-        # Bridges leave the rim open: the sheet is what all its lines bound, and no line bounds anything alone.
-        group.add(Path(d=joined_data(data), stroke="none", debug=False))
+    if style.fill != "none" and any(isinstance(each, Outlines) and not each.closed for each in entities):
+        # Bridges leave outlines open: filled is what lines bound together, drawn are the lines.
+        group.add(Path(d=area_data(entities), stroke="none", debug=False))
         group.add(Path(d=data, fill="none", debug=False))
     elif data:
         group.add(Path(d=data, debug=False))

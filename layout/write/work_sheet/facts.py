@@ -74,6 +74,8 @@ def _of_the_cutter(plan: CutPlan, disc: Disc) -> Iterator[Row]:
             "bridges",
             f"{cutter.bridges.count} in the rim, {cutter.bridges.width_mm:g} mm wide: break out, stone flush",
         )
+        if (slugs := cutter.bridges.slugs) is not None:
+            yield "", f"{slugs.count} in each slug from {slugs.least_slug_mm:g} mm up, {slugs.width_mm:g} mm wide"
     yield from _tools(plan, cutter)
     if cutter.kind == "punch-press":
         yield "rim", "not struck: the blank comes round, or is blanked last"

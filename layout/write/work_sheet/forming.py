@@ -4,6 +4,7 @@ from collections.abc import Iterator
 
 from layout.documents.cutter import Cutter, Fold, Tool
 from layout.mechanics.projection import Pattern, fitting_tool
+from layout.mechanics.slugs import held_openings
 from layout.place.disc import Disc
 from layout.write.work_sheet.forming_sketch import bend_to_deg, sketched
 from layout.write.work_sheet.paper import BODY, STRONG, Area, Paper, headed, written
@@ -91,10 +92,22 @@ def order_of_work(disc: Disc) -> list[str]:
         steps += ["Strike slots and holes, the rim last.", f"Take out every slug. Deburr {_burr(cutter)}."]
     else:
         held = "" if cutter.bridges is None else f" Break its {cutter.bridges.count} bridges and stone the stubs flush."
-        steps += [f"Cut; take the disc out when it is cool.{held}", f"Take out every slug. Deburr {_burr(cutter)}."]
+        slugs = f"{_held_slugs(disc)}Take out every {'loose ' if _held_slugs(disc) else ''}slug."
+        steps += [f"Cut; take the disc out when it is cool.{held}", f"{slugs} Deburr {_burr(cutter)}."]
         folds = disc.pattern.making == "fold" and disc.projection_count > 0
         steps += ["Then fold, never before deburring."] if folds else []
     return [*steps, "Inspect by the list on sheet 2."]
+
+
+def _held_slugs(disc: Disc) -> str:
+    """What is done with slugs that bridges hold, a sentence and a space; "" for none."""
+    cutter = disc.cutter
+    held = [each.what for each in held_openings(disc.pattern, disc.movement, cutter) if each.gaps is not None]
+    if not held or cutter.bridges is None or cutter.bridges.slugs is None:
+        return ""
+    count = cutter.bridges.slugs.count
+    on = "one bridge" if count == 1 else f"{count} bridges"
+    return f"Knock out the slugs of {', '.join(dict.fromkeys(held))}, each on {on}; stone the stubs flush. "
 
 
 def _burr(cutter: Cutter) -> str:

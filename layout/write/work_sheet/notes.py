@@ -3,7 +3,7 @@
 from collections import Counter
 from collections.abc import Iterator
 
-from layout.cut.plan import Circles, CutPlan, Entity, Lettering
+from layout.cut.plan import Circles, CutPlan, Entity, Lettering, Outlines
 from layout.making.making import Making
 from layout.place.disc import Disc
 from layout.write.svg_signs import turning_as_drawn
@@ -30,7 +30,7 @@ def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: M
         area = written(paper, area, line, SMALL).below(0.4)
     area = _bar(paper, area.below(2), disc)
     area = headed(paper, area.below(2), "What is cut")
-    area = rows_written(paper, area, list(_counted(plan)), name_mm=_NAME_MM)
+    area = rows_written(paper, area, list(_counted(plan, disc)), name_mm=_NAME_MM)
     if making is None:
         return area
     area = headed(paper, area.below(1.5), "What making it takes")
@@ -81,16 +81,21 @@ def _bar(paper: Paper, area: Area, disc: Disc) -> Area:
     return written(paper, left, proof, SMALL)
 
 
-def _counted(plan: CutPlan) -> Iterator[Row]:
-    """How many outlines, circles and points each layer holds; a rim held by bridges is one in so many pieces."""
+def _counted(plan: CutPlan, disc: Disc) -> Iterator[Row]:
+    """How many outlines, circles and points each layer holds; what bridges hold is one in so many pieces."""
+    slugs = None if disc.cutter.bridges is None else disc.cutter.bridges.slugs
     counts: Counter[str] = Counter()
+    in_lines: Counter[str] = Counter()
     for entity in plan.disc.entities:
-        counts[entity.layer] += _count(entity)
+        is_line = isinstance(entity, Outlines) and not entity.closed and entity.layer in ("HOLES", "SLOTS")
+        (in_lines if is_line else counts)[entity.layer] += _count(entity)
     for layer, what in _WHAT.items():
-        if counts[layer]:
-            tool = f", tool {plan.tool}" if layer == "HITS" and plan.tool else ""
+        held = in_lines[layer] // slugs.count if slugs is not None else 0
+        if counts[layer] or held:
+            more = f", tool {plan.tool}" if layer == "HITS" and plan.tool else ""
+            more += f", {held} of them in {in_lines[layer]} pieces" if held else ""
             in_pieces = layer == "RIM" and counts[layer] > 1
-            yield what, f"1, in {counts[layer]} pieces" if in_pieces else f"{counts[layer]}{tool}"
+            yield what, f"1, in {counts[layer]} pieces" if in_pieces else f"{counts[layer] + held}{more}"
     yield "projections", f"{len(plan.order)}"
 
 
