@@ -152,7 +152,8 @@ def test_of_two_holes_that_overlap_the_one_struck_later_is_told_once() -> None:
         f"The hit of the drive hole at 100.000° falls with {100 * share:.1f} % of its footprint into the drive hole at "
         "90.000°: the metal pushes the punch aside and its edge runs into the die."
     )
-    assert (finding.at.radius_mm, finding.at.angle_deg) == (pytest.approx(20), pytest.approx(100))
+    assert finding.at.radius_mm == pytest.approx(20)
+    assert finding.at.angle_deg == pytest.approx(100)
     assert "cut apart" in finding.remedy
 
 

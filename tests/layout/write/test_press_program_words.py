@@ -39,12 +39,13 @@ def test_the_order_number_stands_at_the_head() -> None:
         write_press_program(
             plan_cuts(disc, title="Example", fingerprint=FINGERPRINT, not_good=None, order_number=number), disc
         )
-        for number in ("A-4711/2", "a_47", None)
+        for number in ("A-4711/2", "A_47", "a47", None)
     ]
 
     assert b"(ORDER A-4711/2)\n" in heads[0]
     assert b"(ORDER A 47, SPELT AS ON DISC.DXF, NOT AS HERE)\n" in heads[1]
-    assert b"ORDER" not in heads[2]
+    assert b"(ORDER A47, SPELT AS ON DISC.DXF, NOT AS HERE)\n" in heads[2]
+    assert b"ORDER" not in heads[3]
 
 
 def test_a_program_word_by_word() -> None:
