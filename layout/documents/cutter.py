@@ -1,5 +1,6 @@
 """The cutter document: the machine that cuts, its numbers and its layer names."""
 
+from collections.abc import Mapping
 from typing import Annotated, Literal, Self
 
 from pydantic import Field, model_validator
@@ -128,6 +129,24 @@ class Layer(Part):
     colour: Annotated[int, Field(ge=1, le=255)]
 
 
+def layer_of(layers: Mapping[str, Layer], ours: str) -> Layer:
+    """The layer name and colour wanted for one of our layer names: ours where nothing else is."""
+    return layers.get(ours) or Layer(name=ours, colour=LAYER_COLOURS[ours])
+
+
+def check_layers(layers: Mapping[str, Layer]) -> None:
+    """Raise ValueError where layers are wanted for a name that is none of ours, or two would be one."""
+    unknown = sorted(set(layers) - set(LAYER_COLOURS))
+    if unknown:
+        raise ValueError(f"layers: no layer of ours is called {unknown[0]!r}; ours are {', '.join(LAYER_COLOURS)}")
+    seen: dict[str, str] = {}
+    for ours in LAYER_COLOURS:
+        wanted = layer_of(layers, ours).name
+        if wanted.casefold() in seen:
+            raise ValueError(f"layers: {seen[wanted.casefold()]} and {ours} would share the layer {wanted!r}")
+        seen[wanted.casefold()] = ours
+
+
 class Cutter(Part):
     """A cutting machine and what it can do to the sheet."""
 
@@ -178,20 +197,12 @@ class Cutter(Part):
 
     @model_validator(mode="after")
     def _layers_stay_apart(self) -> Self:
-        unknown = sorted(set(self.layers) - set(LAYER_COLOURS))
-        if unknown:
-            raise ValueError(f"layers: no layer of ours is called {unknown[0]!r}; ours are {', '.join(LAYER_COLOURS)}")
-        seen: dict[str, str] = {}
-        for ours in LAYER_COLOURS:
-            theirs = self.layer(ours).name.casefold()
-            if theirs in seen:
-                raise ValueError(f"layers: {seen[theirs]} and {ours} would share the layer {self.layer(ours).name!r}")
-            seen[theirs] = ours
+        check_layers(self.layers)
         return self
 
     def layer(self, ours: str) -> Layer:
         """The layer name and colour this cutter wants for one of our layer names."""
-        return self.layers.get(ours) or Layer(name=ours, colour=LAYER_COLOURS[ours])
+        return layer_of(self.layers, ours)
 
 
 def read_cutter(text: str | bytes) -> Cutter:
