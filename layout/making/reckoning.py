@@ -14,7 +14,7 @@ from layout.mechanics.projection import fitting_tool
 from layout.mechanics.punching import cutting_force_n, press_force_n, sheared_length_mm, stripping_force_n
 from layout.place.disc import Disc
 
-FIRST_TOOL = "first tool (taken to be in the press)"
+FIRST_TOOL = "first tool (in the press already)"
 PROJECTIONS = "projections (no tool of that size)"
 
 _NO_FEEDS = Feeds()

@@ -112,7 +112,8 @@ def not_struck(movement: Movement, cutter: Cutter) -> tuple[str, ...]:
 def _row_told(feature: Feature) -> str:
     size = f"{feature.width_mm:g}" if feature.shape == "hole" else f"{feature.length_mm:g} x {feature.width_mm:g}"
     shape = feature.shape if feature.count == 1 else "notches" if feature.shape == "notch" else f"{feature.shape}s"
-    return f"{feature.count} {feature.purpose} {shape} {size} mm"
+    named = f"{feature.purpose} {shape} {size} mm"
+    return named if feature.count == 1 else f"{feature.count} {named}"
 
 
 def _holes(blank: DiscBlank) -> Iterator[_Hole]:

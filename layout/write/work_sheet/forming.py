@@ -89,7 +89,7 @@ def order_of_work(disc: Disc) -> list[str]:
             "Deburr rim and holes; take out every loose slug.",
         ]
     elif cutter.kind == "punch-press":
-        steps += ["Strike slots and holes, the rim last.", f"Take out every slug. Deburr {_burr(cutter)}."]
+        steps += ["Strike the holes, then the slots, the rim last.", f"Take out every slug. Deburr {_burr(cutter)}."]
     else:
         held = "" if cutter.bridges is None else f" Break its {cutter.bridges.count} bridges and stone the stubs flush."
         slugs = f"{_held_slugs(disc)}Take out every {'loose ' if _held_slugs(disc) else ''}slug."

@@ -118,7 +118,7 @@ def _taken(making: Making) -> Iterator[Row]:
     yield from ((name, f"{force_n / _KILO:.2f} kN") for name, force_n in forces if force_n is not None)
     if making.press_force_n is not None:
         most = max(making.tools, key=lambda work: work.press_force_n or 0.0)
-        yield "press force", f"{making.press_force_n / _KILO:.2f} kN for {most.tool}: hit and stripping"
+        yield "press force", f"{making.press_force_n / _KILO:.2f} kN, by {most.tool}"
     if making.time_s is not None:
         yield "machine time", _minutes(making.time_s)
     masses = (("mass of blank", making.blank_mass_kg), ("mass of disc", making.disc_mass_kg))

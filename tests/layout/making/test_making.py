@@ -332,7 +332,7 @@ def test_what_no_figure_counts_on_a_press_is_named_and_a_laser_counts_all() -> N
     assert made(NOTHING, {}, STEEL, PRESS_IN_FULL).not_counted == (
         "centre hole 10 mm (no tool of that size)",
         "rim (left to blanking)",
-        "first tool (taken to be in the press)",
+        "first tool (in the press already)",
     )
     assert made(NOTHING, {"tools": []}, STEEL, PRESS_IN_FULL).not_counted == (
         "projections (no tool of that size)",

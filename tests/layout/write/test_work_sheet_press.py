@@ -2,9 +2,11 @@
 
 from dataclasses import replace
 
+from layout.cut import plan_cuts
+from layout.making import making_of
 from layout.making.making import Making, ToolWork
 from tests.layout.examples import PRESS, cutter_with, disc_of, movement_with
-from tests.layout.write.examples import ONE_FOLD, THREE_LANCES
+from tests.layout.write.examples import FINGERPRINT, ONE_FOLD, THREE_LANCES
 from tests.layout.write.work_sheets import sheet_of, words_of
 
 
@@ -50,6 +52,18 @@ def test_forces_of_a_press_are_told_where_they_are_known() -> None:
     words = words_of(sheet_of(THREE_LANCES, making=struck))
 
     assert "struck 3 times force of a hit 2.48 kN stripping 0.50 kN" in words
-    assert "press force 7.49 kN for R12: hit and stripping machine time 12.0 s" in words
+    assert "press force 7.49 kN, by R12 machine time 12.0 s" in words
     assert "price" not in words
     assert "struck once" in words_of(sheet_of(THREE_LANCES, making=Making(hit_count=1)))
+
+
+def test_what_a_press_leaves_out_is_told_in_full_on_the_disc_with_the_most_to_tell() -> None:
+    disc = THREE_LANCES
+    plan = plan_cuts(disc, title="Example", fingerprint=FINGERPRINT, not_good=None)
+
+    words = words_of(sheet_of(disc, making=making_of(disc, plan)))
+
+    assert (
+        "Not counted in time and price: location notch 4 x 3 mm (part of the rim), rim (left to blanking), "
+        "first tool (in the press already)."
+    ) in words
