@@ -5,7 +5,7 @@ import math
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, GRAIN_RAD
+from layout.check.margin import GRAIN_MM, GRAIN_RAD, told_worth
 from layout.mechanics.arrays import BoolArray, FloatArray
 from layout.place.disc import Disc
 
@@ -63,6 +63,12 @@ def bends_lie_across_the_rolling(disc: Disc) -> list[Finding]:
                 f"{int(along.sum())} of {disc.projection_count} {bend} lie less than {LEAST_TO_ROLLING_DEG:g} degrees "
                 f"from the direction the sheet is rolled in: those {_sectors(rolled_deg)} on the disc; the nearest "
                 f"lies {to_rolling_deg[nearest]:.1f} degrees from it. Bent along the rolling, metal cracks more easily."
+                + told_worth(
+                    float(to_rolling_deg[nearest]) - LEAST_TO_ROLLING_DEG,
+                    disc.movement.plus_minus("/disc/rolled_along_deg"),
+                    "deg",
+                    fails=True,
+                )
             ),
             measured=float(to_rolling_deg[nearest]),
             limit=LEAST_TO_ROLLING_DEG,
