@@ -222,7 +222,7 @@ def test_deburring_comes_before_folding_and_stays_on_the_burr_side() -> None:
 def test_a_press_strikes_slots_and_cuts_nothing_hot() -> None:
     struck, cut = (words_of(sheet_of(disc)) for disc in (SLOTS_ON_A_PRESS, THREE_SLOTS))
 
-    assert "2. Strike slots and holes, the rim last. 3. Take out every slug. Deburr both sides." in struck
+    assert "2. Strike the holes, then the slots, the rim last. 3. Take out every slug. Deburr both sides." in struck
     assert "when it is cool" not in struck
     assert "2. Cut; take the disc out when it is cool." in cut
 
