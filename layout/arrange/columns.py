@@ -12,7 +12,7 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from layout.arrange.integer_program import Row
-from layout.arrange.loads import hard_moments, heavy_moments
+from layout.arrange.loads import hard_moments, heavy_moments, lifted_count
 from layout.arrange.moments_kept import Overrun
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import NO_PLUCK, Problem
@@ -22,7 +22,13 @@ _STEPS_TOGETHER = 6  # spots on one track that a row from the start lets through
 
 
 class Columns:
-    """The columns of a group of plucks, and the rows between them."""
+    """The columns of a group of plucks, and the rows between them.
+
+    Attributes:
+        worth: Shape (columns,). What each column is worth, below 0 where it costs.
+        most: No choice is worth more.
+        lifted: How many spots lifted at moments the rows of the drive look at.
+    """
 
     def __init__(self, problem: Problem, plucks: IntArray) -> None:
         self._problem = problem
@@ -45,6 +51,7 @@ class Columns:
                 np.zeros(len(self._spreads), dtype=np.int64),
             ]
         ).astype(np.int64)
+        self.lifted = lifted_count(problem, self._spots)
         self.most = sum(max((int(problem.worth[spot]) for spot in one), default=0) for one in ranges)
 
     def spots_of(self, ones: IntArray) -> tuple[int, ...]:

@@ -16,11 +16,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from layout.arrange.broken import broken_by
-from layout.arrange.budget import Budget
+from layout.arrange.budget import LOOKS_TO_FIT, LOOKS_TO_JUDGE, LOOKS_TO_NARROW, LOOKS_TO_PLAY, LOOKS_TO_WRITE, Budget
 from layout.arrange.by_time import Best, Stuck, best_by_time, narrow_by_time
-from layout.arrange.coupled import best_coupled, worth_of
+from layout.arrange.coupled import MOST_LIFTED, best_coupled, worth_of
 from layout.arrange.fitting import fitted
-from layout.arrange.loads import piled_up
+from layout.arrange.loads import lifted_count, piled_up
 from layout.arrange.parts import parts_of
 from layout.arrange.playing import Played, played
 from layout.arrange.problem import Problem
@@ -130,7 +130,9 @@ class Solving:
             return self.impossible
         while broken := self._broken(budget):
             if not self._widened and self.problem.drive is not None and budget.stopped != "time":
-                self._widen()
+                self._widened = True
+                if not self._widen(budget):
+                    return self._as_it_stands(self._chosen(), budget)
                 continue
             if budget.spent:
                 return self._as_it_stands(self._chosen(), budget)
@@ -152,11 +154,13 @@ class Solving:
 
     def _broken(self, budget: Budget) -> list[tuple[int, ...]]:
         chosen = self._chosen()
+        budget.spend_looks(LOOKS_TO_JUDGE * len(chosen))
         return broken_by(self.problem, chosen) or self._piled(chosen, budget)
 
     def _play(self, spots: tuple[int, ...], budget: Budget) -> Played:
         """A choice with its moments; kept, since what nothing is wrong with is asked for once more."""
         if self._last_played is None or self._last_played[:2] != (spots, self.problem.piled):
+            budget.spend_looks(LOOKS_TO_PLAY * len(spots))
             in_haste = len(spots) > MOST_AT_LEISURE and budget.stopped == "time"
             self._last_played = spots, self.problem.piled, played(self.problem, spots, in_haste=in_haste)
         return self._last_played[2]
@@ -176,17 +180,24 @@ class Solving:
         self.problem = replace(problem, piled=(*problem.piled, *piles))
         return piled_up(self.problem, np.array(chosen, dtype=np.int64))
 
-    def _widen(self) -> None:
-        """Let chords too heavy for the drive be spread; what is chosen so far stays as it is."""
-        self._widened = True
+    def _widen(self, budget: Budget) -> bool:
+        """Let chords too heavy for the drive be spread; what is chosen so far stays as it is.
+
+        False where it would take too long: what is found without is not proved then.
+        """
+        lifted = lifted_count(self.problem, np.arange(self.problem.spot_count))
+        budget.spend_looks(LOOKS_TO_WRITE * lifted)
+        if lifted > MOST_LIFTED:
+            return False
         problem = with_spread_chords(self.problem)
         if problem is self.problem:
-            return
+            return True
         now = np.flatnonzero(problem.spread == 0)
         for group in self._groups:
             group.spots = tuple(now[list(group.spots)].tolist())
         self._alone = {pluck: int(now[spot]) for pluck, spot in self._alone.items()}
         self.problem = replace(problem, piled=tuple(tuple(now[list(pile)].tolist()) for pile in problem.piled))
+        return True
 
     def _lower_bound(self) -> None:
         if self.problem.piled:
@@ -214,11 +225,12 @@ class Solving:
             if group is None or group.is_best:
                 return group
         narrow = narrow_by_time(steps, plucks)
+        budget.spend_looks(LOOKS_TO_NARROW * len(plucks))
         bound = narrow.bound if group is None else min(narrow.bound, group.bound)
         choices = [group.spots] if group is not None else []
         choices += [narrow.best.spots] if narrow.best is not None else []
         if not choices:
-            by_hand = self._by_hand(plucks, ())
+            by_hand = self._by_hand(plucks, (), budget)
             if by_hand is None:
                 return None
             choices.append(by_hand)
@@ -231,7 +243,7 @@ class Solving:
             return None
         spots = found.spots
         if spots is None or found.worth < found.bound:
-            by_hand = self._by_hand(plucks, spots or ())
+            by_hand = self._by_hand(plucks, spots or (), budget)
             if by_hand is None:
                 return None
             if spots is None or worth_of(self.problem, by_hand) > found.worth:
@@ -273,7 +285,7 @@ class Solving:
     def _as_it_stands(self, chosen: Sequence[int], budget: Budget) -> Solved | Impossible:
         """A choice so far, less what breaks a rule."""
         plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
-        spots = self._by_hand(plucks, chosen)
+        spots = self._by_hand(plucks, chosen, budget)
         if spots is None:
             return Impossible(plucks=plucks)
         while piled := self._piled(spots, budget):
@@ -291,12 +303,13 @@ class Solving:
         left = [spot for spot in chosen if int(problem.pluck[spot]) not in gone]
         return tuple(spot for spot in left if int(problem.parent[problem.pluck[spot]]) not in gone)
 
-    def _by_hand(self, plucks: IntArray, preferred: Sequence[int]) -> tuple[int, ...] | None:
+    def _by_hand(self, plucks: IntArray, preferred: Sequence[int], budget: Budget) -> tuple[int, ...] | None:
         """A choice that keeps every rule, near to the one preferred; None where there is none at all.
 
         Rulings are followed or refused for what is true, so where putting spots down one after the
         other finds no room for those that must sound, they are looked for whatever that costs.
         """
+        budget.spend_looks(LOOKS_TO_FIT * len(plucks))
         spots = fitted(self.problem, plucks, preferred)
         forced = plucks[self.problem.must_sound[plucks]]
         if spots is not None or not len(forced):
