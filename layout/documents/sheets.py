@@ -158,7 +158,7 @@ class SheetJob(Part):
     stock: Annotated[tuple[Stock, ...], Field(max_length=LIMITS.stock_kinds)]
     discs: Annotated[tuple[WantedDiscs, ...], Field(max_length=LIMITS.disc_kinds)]
     layers: dict[str, Layer] = Field(default_factory=dict)
-    labels: bool = True
+    labels: Annotated[bool, Field(strict=True)] = True
 
     @field_validator("stock")
     @classmethod

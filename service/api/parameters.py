@@ -7,6 +7,8 @@ from werkzeug.datastructures import MultiDict
 from service.api.problems import ProblemError
 from service.reason import ReasonError, checked_reason
 
+_SHOWN_CHARACTERS = 80  # of a name that is none, so that the answer stays readable
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Query:
@@ -37,7 +39,8 @@ def read_query(query: MultiDict[str, str], *, known: tuple[str, ...], most_reaso
     for name, values in query.lists():
         if name not in known:
             others = f"known are {', '.join(known)}" if known else "none are taken"
-            raise _invalid(name, f"there is no parameter called {name!r} here; {others}")
+            shown = name[:_SHOWN_CHARACTERS]
+            raise _invalid(shown, f"there is no parameter called {shown!r} here; {others}")
         if len(values) > 1:
             raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
     return Query(

@@ -3,6 +3,7 @@
 from flask import Request
 
 from layout.documents import shipped_movement_ids
+from service.api.bodies import body_of
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import Query
@@ -64,32 +65,14 @@ def _parts(request: Request, limits: Limits) -> dict[str, bytes]:
         raise _unsupported(f"the body is packed ({coding!r}); send it as it is", {"Accept-Encoding": "identity"})
     if request.mimetype == FORM_MEDIA_TYPE:
         return parts_of(
-            _body(request, limits.upload_bytes),
+            body_of(request, limits.upload_bytes),
             boundary=request.mimetype_params.get("boundary"),
             known=("tune", *DOCUMENT_PARTS),
             most_parts=limits.form_parts,
         )
     if request.mimetype in TUNE_MEDIA_TYPES or not request.mimetype:
-        return {"tune": _body(request, limits.upload_bytes)}
+        return {"tune": body_of(request, limits.upload_bytes)}
     raise _unsupported(f"{request.mimetype!r} is not taken; taken are {', '.join(MEDIA_TYPES)}", {})
-
-
-def _body(request: Request, most_bytes: int) -> bytes:
-    """The whole body; the web library would cut off a chunked one at its limit and say nothing."""
-    length = request.content_length
-    if length is not None and length > most_bytes:
-        raise too_large(most_bytes, "the request body")
-    body = bytearray()
-    while len(body) <= most_bytes and (chunk := request.stream.read(most_bytes + 1 - len(body))):
-        body += chunk
-    if len(body) > most_bytes:
-        raise too_large(most_bytes, "the request body")
-    if length is not None and len(body) < length:
-        raise ProblemError(
-            name="request-malformed",
-            detail=f"the body ended after {len(body)} bytes, but Content-Length says {length}; send it again",
-        )
-    return bytes(body)
 
 
 def _unsupported(detail: str, headers: dict[str, str]) -> ProblemError:

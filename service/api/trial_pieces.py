@@ -10,6 +10,7 @@ from layout.documents import Cutter, Movement, shipped_movement_ids
 from layout.trial_walk import trial_files
 from service.api.answers import JSON_MEDIA_TYPE, ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
+from service.api.bodies import body_of
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import Query, read_query
@@ -123,9 +124,7 @@ def _read(asked: Request, query: Query, limits: Limits) -> _Asked:
 
 
 def _parts(asked: Request, limits: Limits) -> dict[str, bytes]:
-    body = asked.stream.read(limits.upload_bytes + 1)
-    if len(body) > limits.upload_bytes:
-        raise too_large(limits.upload_bytes, "the request body")
+    body = body_of(asked, limits.upload_bytes)
     if asked.mimetype == FORM_MEDIA_TYPE:
         return parts_of(
             body,
@@ -134,10 +133,11 @@ def _parts(asked: Request, limits: Limits) -> dict[str, bytes]:
             most_parts=limits.form_parts,
         )
     if body:
+        sent = repr(asked.mimetype) if asked.mimetype else "a body without a media type"
         raise ProblemError(
             name="media-type-unsupported",
-            detail=f"{asked.mimetype or 'a body without a media type'!r} is not taken; documents of your own come as "
-            f"parts of {FORM_MEDIA_TYPE}, and a trial piece needs no tune",
+            detail=f"{sent} is not taken; documents of your own come as parts of {FORM_MEDIA_TYPE}, and a trial piece "
+            "needs no tune",
             more={"allowed_types": [FORM_MEDIA_TYPE]},
             headers={"Accept-Post": FORM_MEDIA_TYPE},
         )
