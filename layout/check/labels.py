@@ -53,7 +53,7 @@ def labels_stand(disc: Disc, *, title: str, without_room: tuple[str, ...]) -> li
         found.append(
             _advice(
                 Code.LABEL_MISSING,
-                message=f"The title is not lettered: the single-stroke letters have no likeness of {title!r}.",
+                message="The title is not lettered: more than half of its letters have no likeness among A to Z.",
                 remedy=f"Give a title in Latin letters in the settings, or letter the {side} by hand.",
             )
         )

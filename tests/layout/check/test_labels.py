@@ -60,7 +60,7 @@ def test_a_title_in_letters_that_are_not_engraved_is_one_advice() -> None:
     [finding] = labels_stand(disc_of(PLAIN, [(1, 1.0)]), title="春の海", without_room=())
 
     assert (finding.code, finding.level) == (Code.LABEL_MISSING, Level.ADVICE)
-    assert finding.message == "The title is not lettered: the single-stroke letters have no likeness of '春の海'."
+    assert finding.message == "The title is not lettered: more than half of its letters have no likeness among A to Z."
     assert finding.remedy == "Give a title in Latin letters in the settings, or letter the label side by hand."
 
 
