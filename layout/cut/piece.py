@@ -11,20 +11,21 @@ import numpy as np
 import shapely
 
 from layout.cut.blank import WIDEST_ARC_RAD, holes
-from layout.cut.bridges import with_bridges
 from layout.cut.kerf import as_the_beam_runs
 from layout.cut.leads import with_leads
 from layout.cut.mirroring import mirrored, mirrored_points_mm
 from layout.cut.path import HOT_WEB_MM
 from layout.cut.plan import Drawing, Entity, Outlines, Points
+from layout.cut.slugs import with_held_slugs
 from layout.cut.touring import short_round_trip
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats, frozen_ints
 from layout.mechanics.bridging import gap_mm, gaps_in
 from layout.mechanics.hits import Hits
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
+from layout.place.disc import Disc
 
 _SAME_PLACE_MM = 1e-6  # mm; a nanometre: an arc whose centre lies so near the origin goes round it
 _ON_AN_ARC = 8  # places that stand for an arc where openings are held against each other
@@ -48,8 +49,8 @@ def plan_piece(drawing: Drawing, movement: Movement, cutter: Cutter) -> PieceCut
 
     A laser's openings follow one another on a short round trip, and two with less than HOT_WEB_MM of metal between
     them never directly, where that can be helped; a press's hits as on a disc, after the holes. Holes
-    and outline have the leads and bridges the cutter asks for; openings have leads alone, since what falls out
-    of them is to be seen falling.
+    and outline have the leads and bridges the cutter asks for, slugs of holes too; openings have leads alone, since
+    what falls out of them is to be seen falling.
 
     Args:
         drawing: What is marked, cut and struck, as finished and as drawn: one closed outline on RIM about the origin,
@@ -61,17 +62,30 @@ def plan_piece(drawing: Drawing, movement: Movement, cutter: Cutter) -> PieceCut
     openings = [one for entity in drawing.entities if entity.layer in ("SLITS", "SLOTS") for one in _singly(entity)]
     ordered: list[Entity] = [openings[place] for place in _laser_order(openings, cutter).tolist()]
     ordered += [_struck_in_order(entity, movement, cutter) for entity in drawing.entities if isinstance(entity, Points)]
-    mirror = cutter.drawn_from == "star-side"
-    blank = [mirrored(entity) if mirror else entity for entity in holes(movement)]
-    holed = [part for hole in blank for part in with_bridges(as_the_beam_runs(hole, cutter), cutter)]
-    beams = [as_the_beam_runs(entity, cutter) for entity in ordered]
+    holed = _holes(movement, cutter)
+    beams = [part for entity in ordered for part in with_leads(as_the_beam_runs(entity, cutter), cutter)]
     # As on a disc: a press strikes holes first, so that none is struck beside formed metal (common practice).
     inner = [*holed, *beams] if cutter.kind == "punch-press" else [*beams, *holed]
     outline = [as_the_beam_runs(entity, cutter) for entity in drawing.entities if entity.layer == "RIM"]
     rim = [part for entity in outline if isinstance(entity, Outlines) for part in _with_bridges(entity, cutter)]
-    led_in = [part for entity in (*inner, *rim) for part in with_leads(entity, cutter)]
+    led_in = [part for entity in rim for part in with_leads(entity, cutter)]
     held = cutter.bridges is None or any(not part.closed for part in rim)
-    return PieceCuts(drawing=replace(drawing, entities=(*marks, *led_in)), held=held)
+    return PieceCuts(drawing=replace(drawing, entities=(*marks, *inner, *led_in)), held=held)
+
+
+def _holes(movement: Movement, cutter: Cutter) -> list[Entity]:
+    """The blank's holes as on a disc, slugs held and led in, as drawn."""
+    bare = Disc(
+        movement=movement,
+        cutter=cutter,
+        turning=turning_of(movement),
+        pattern=pattern_of(movement, cutter),
+        track_index=frozen_ints([]),
+        edge_angle_rad=frozen_floats([]),
+    )
+    held = [part for hole in holes(movement) for part in with_held_slugs(as_the_beam_runs(hole, cutter), bare)]
+    led_in = [part for entity in held for part in with_leads(entity, cutter)]
+    return [mirrored(entity) for entity in led_in] if cutter.drawn_from == "star-side" else led_in
 
 
 def _singly(entity: Entity) -> Iterator[Outlines]:

@@ -3,6 +3,7 @@
 import io
 import itertools
 import math
+from collections.abc import Iterable
 from dataclasses import replace
 from typing import Any
 
@@ -14,14 +15,15 @@ from ezdxf.filemanagement import read
 from ezdxf.math import bulge_to_arc
 from ezdxf.path import make_path
 
+from layout.cut import plan_cuts
 from layout.cut.path import HOT_WEB_MM
 from layout.cut.piece import plan_piece
-from layout.cut.plan import Outlines, Points
+from layout.cut.plan import Entity, Outlines, Points
 from layout.documents import Cutter, Movement
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.trial import trial_piece
 from layout.trial_walk import plan_trial, trial_files
-from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, movement_with
+from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 
 FERNHOLLOW, MOSSBROOK, TARNLIGHT = SHIPPED
 IDS = [movement.id for movement in SHIPPED]
@@ -189,6 +191,26 @@ def test_what_falls_out_of_a_step_is_held_by_nothing() -> None:
 
     assert len(plain) == len(held)
     assert all(one == pytest.approx(other) for one, other in zip(plain, held, strict=True))
+
+
+@pytest.mark.parametrize("side", ["label-side", "star-side"])
+def test_the_slugs_of_its_holes_are_held_as_those_of_a_disc(side: str) -> None:
+    slugs = {"count": 2, "width_mm": 0.4, "least_slug_mm": 3.0}
+    bridges = {"count": 3, "width_mm": 0.8, "slugs": slugs}
+    cutter = cutter_with({"drawn_from": side, "bridges": bridges, "lead_in": {"length_mm": 0.4}})
+    plan = plan_cuts(disc_of(FERNHOLLOW, [], cutter), title="Holes", fingerprint="0" * 16, not_good=None)
+
+    def holes_of(entities: Iterable[Entity]) -> list[FloatArray]:
+        return [
+            points_mm
+            for entity in entities
+            if isinstance(entity, Outlines) and entity.layer == "HOLES"
+            for points_mm in entity.points_mm
+        ]
+
+    piece, disc = (holes_of(one.entities) for one in (plan_trial(FERNHOLLOW, cutter).drawing, plan.disc))
+    assert len(piece) > 3
+    assert all(one == pytest.approx(other) for one, other in zip(piece, disc, strict=True))
 
 
 def test_a_piece_without_room_for_its_bridges_stays_closed_and_says_so() -> None:
