@@ -114,7 +114,7 @@ def _near(places_mm: FloatArray, trip: "_Trip") -> list[list[tuple[int, float]]]
 
 @dataclass(slots=True, eq=False)
 class _Trip:
-    """A round trip that is being shortened. A way round is `after` or `before`: the step to the next stop."""
+    """A round trip that is being shortened. A way round, `ahead`, is 1 along the order or -1 against it."""
 
     x_mm: list[float]
     y_mm: list[float]
@@ -141,9 +141,6 @@ class _Trip:
 
     def after(self, stop: int) -> int:
         return self.order[self.place[stop] + 1 - len(self.order)]
-
-    def before(self, stop: int) -> int:
-        return self.order[self.place[stop] - 1]
 
     def mend(self, stops: list[int]) -> None:
         """Shorten the trip round some stops, and round all that this changes, till nothing more helps."""
