@@ -60,7 +60,7 @@ def labels_beside(
 
 
 def _fitting(boxes: FloatArray, inside: BaseGeometry, discs: shapely.STRtree) -> BoolArray:
-    """Shape (m, w). Whether each box lies inside and off every disc."""
+    """Shape (m, w). Whether each box lies inside and off every disc; what is left is few, and looked at one by one."""
     shapes = np.asarray(shapely.box(*boxes.reshape(-1, 4).T), dtype=np.object_)
     fits = np.asarray(shapely.contains(inside, shapes))
     tried = np.flatnonzero(fits)
