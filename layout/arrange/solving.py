@@ -128,12 +128,18 @@ class Solving:
             self.some_parts(budget)
         if self.impossible is not None:
             return self.impossible
+        return self._joined_up(budget)
+
+    def _joined_up(self, budget: Budget) -> Solved | Impossible:
+        """Parts that a choice breaks together, solved together, until nothing is broken."""
+        if lifted_count(self.problem, np.array(self._chosen(), dtype=np.int64)) > MOST_LIFTED:
+            return self._as_it_stands(self._chosen(), budget)
         while broken := self._broken(budget):
             if not self._widened and self.problem.drive is not None and budget.stopped != "time":
                 self._widened = True
-                if not self._widen(budget):
-                    return self._as_it_stands(self._chosen(), budget)
-                continue
+                if self._widen(budget):
+                    continue
+                return self._as_it_stands(self._chosen(), budget)
             if budget.spent:
                 return self._as_it_stands(self._chosen(), budget)
             chosen = self._chosen()

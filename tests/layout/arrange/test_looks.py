@@ -56,6 +56,18 @@ def test_a_program_with_more_lifted_than_is_looked_at_is_not_begun(monkeypatch: 
     assert (found.spots, found.bound) == (None, 2000)
 
 
+def test_a_choice_that_lifts_too_many_to_be_judged_is_put_down_by_hand(monkeypatch: pytest.MonkeyPatch) -> None:
+    plucks = [Asked(at_ms=1000, nudge_ms=0), Asked(at_ms=1000, tracks=(1,), nudge_ms=0)]
+    problem = problem_with(plucks, least_ms=(1, 1), drive=drive_of((60, 60), 10, 100))
+    proved = solved_with(problem, 10**6)[0]
+    monkeypatch.setattr(solving, "MOST_LIFTED", 1)
+
+    found = solved_with(problem, 10**6)[0]
+
+    assert (proved.worth, proved.bound) == (1000, 1000)
+    assert (found.worth, found.bound) == (1000, 2000)
+
+
 def test_chords_are_not_spread_where_looking_for_them_takes_too_long(monkeypatch: pytest.MonkeyPatch) -> None:
     plucks = [Asked(at_ms=1000), Asked(at_ms=1000, tracks=(1,))]
     problem = problem_with(plucks, least_ms=(1, 1), drive=drive_of((60, 60), 10, 100))
