@@ -65,6 +65,7 @@ def judged(job: SheetJob) -> int:
             }
             assert min(apart.values()) >= CLEAR_MM - 1e-5
             assert min(apart, key=lambda at: apart[at]) == (own["x_mm"], own["y_mm"])
+            assert len(apart) == 1 or sorted(apart.values())[1] >= min(apart.values()) + 0.5 - 1e-5  # plainly its own
             assert all(box.distance(other) >= CLEAR_MM - 1e-5 for name, other in boxes.items() if name != text)
         labelled += len(boxes)
     return labelled
@@ -191,3 +192,10 @@ def test_a_disc_in_lines_and_arcs_is_placed_entity_by_entity(release: str) -> No
     version = ezdxf.read(io.StringIO(files["sheet-1.dxf"].decode("ascii"))).dxfversion  # type: ignore[attr-defined]
     assert version == {"R12": "AC1009", "R2010": "AC1024"}[release]
     assert math.isclose(disc["diameter_mm"], RIM_MM)
+
+
+@pytest.mark.parametrize(("diameter_mm", "gap_mm"), [(40, 14), (12, 9), (20, 4)])
+def test_labels_among_many_discs_are_nobody_elses_and_apart(diameter_mm: float, gap_mm: float) -> None:
+    job = job_of([sheet(300, 220)], [(diameter_mm, 20)], gap_mm=gap_mm, margin_mm=8)
+
+    assert judged(job) >= 5
