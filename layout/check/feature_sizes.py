@@ -17,14 +17,13 @@ from numpy.typing import NDArray
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, told_worth
+from layout.check.worth import WIDTH, edge_unsure_mm, feature_unsure_mm, most_web_unsure_mm, web_unsure_mm
 from layout.documents.cutter import WIDEST_WEB_MM
 from layout.mechanics.arrays import FloatArray
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
-
-_WIDTH = "/projection/width_mm"
 
 Kind = Literal["hole", "web", "edge", "slit"]
 
@@ -77,11 +76,8 @@ def features_suit_the_sheet(disc: Disc) -> list[Finding]:
 def _levels_mm(disc: Disc, ratios: tuple[float, float, float]) -> tuple[float, ...]:
     """The limits of webs; above the last one more, up to which a web may still be below it by what it is worth."""
     limits_mm = tuple(ratio * disc.movement.disc.thickness_mm for ratio in ratios)
-    worth = disc.movement.plus_minus
-    radius_mm = max((worth(_radius(index)) for index in disc.used_tracks), default=0.0)
-    rows_mm = max((_feature_unsure_mm(disc, row) for row in range(len(disc.movement.disc.features))), default=0.0)
-    along_mm = worth("/projection/length_mm") + worth("/projection/depth_mm")
-    most_mm = 2 * radius_mm + rows_mm + worth(_WIDTH) + along_mm + _thickness_unsure_mm(disc, ratios[-1])
+    rows_mm = max((feature_unsure_mm(disc, row) for row in range(len(disc.movement.disc.features))), default=0.0)
+    most_mm = most_web_unsure_mm(disc) + rows_mm + _thickness_unsure_mm(disc, ratios[-1])
     return (*limits_mm, limits_mm[-1] + most_mm) if most_mm > 0 else limits_mm
 
 
@@ -174,7 +170,7 @@ def _slits(disc: Disc) -> Iterator[_Size]:
     """A slit as wide as the kerf is no feature: the beam alone makes it. A press's lance leaves none."""
     projection, fold = disc.movement.projection, disc.cutter.fold
     if projection.kind == "slot":
-        unsure_mm = disc.movement.plus_minus(_WIDTH)
+        unsure_mm = disc.movement.plus_minus(WIDTH)
         yield _Size(what="The slot's width", size_mm=projection.width_mm, unsure_mm=unsure_mm)
     elif disc.pattern.making == "fold" and fold is not None and fold.slit_width_mm is not None:
         yield _Size(what="The slit's width", size_mm=fold.slit_width_mm)
@@ -193,7 +189,7 @@ def _edges(disc: Disc) -> Iterator[_Size]:
         nearest_mm, farthest_mm = _reach_mm(core, disc.pattern.core_round_mm)
         at = Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index]))
         of = f"from the openings of track {index + 1}"
-        off_mm = worth(_radius(index)) + worth(_WIDTH) / 2
+        off_mm = edge_unsure_mm(disc, index)
         to_rim_mm, to_hole_mm = rim_mm - farthest_mm, nearest_mm - hole_mm
         yield _Size(what=f"The metal {of} to the rim", size_mm=to_rim_mm, unsure_mm=off_mm + rim_off_mm, at=at)
         yield _Size(
@@ -203,7 +199,7 @@ def _edges(disc: Disc) -> Iterator[_Size]:
         core, round_mm = feature_core_mm(one, math.radians(one.first_at_deg))
         nearest_mm, farthest_mm = _reach_mm(core, round_mm)
         at = Place(radius_mm=one.radius_mm, angle_deg=one.first_at_deg % 360)
-        of, off_mm = f"from a {one.purpose} {one.shape}", _feature_unsure_mm(disc, row)
+        of, off_mm = f"from a {one.purpose} {one.shape}", feature_unsure_mm(disc, row)
         to_rim_mm, to_hole_mm = rim_mm - farthest_mm, nearest_mm - hole_mm
         if one.shape != "notch":  # which crosses the rim
             yield _Size(what=f"The metal {of} to the rim", size_mm=to_rim_mm, unsure_mm=off_mm + rim_off_mm, at=at)
@@ -212,33 +208,12 @@ def _edges(disc: Disc) -> Iterator[_Size]:
         )
 
 
-def _radius(track_index: int) -> str:
-    return f"/tracks/{track_index}/radius_mm"
-
-
-def _feature_unsure_mm(disc: Disc, row: int) -> float:
-    """How far the edge of a feature towards centre or rim may be off."""
-    at = f"/disc/features/{row}"
-    return disc.movement.plus_minus(f"{at}/radius_mm") + disc.movement.plus_minus(f"{at}/width_mm") / 2
-
-
-def _web_unsure_mm(disc: Disc, one: int, other: int) -> float:
-    """How far a web between two openings may be off: across the tracks by radii and a width, along one by a length.
-
-    On one track the web lies along the travel, where openings stand as they are cut, not as the movement is measured.
-    """
-    tracks, worth = disc.track_index[[one, other]].tolist(), disc.movement.plus_minus
-    if tracks[0] == tracks[1]:
-        return worth("/projection/length_mm" if disc.pattern.making == "slot" else "/projection/depth_mm")
-    return worth(_radius(tracks[0])) + worth(_radius(tracks[1])) + worth(_WIDTH)
-
-
 def _webs(disc: Disc, limits_mm: tuple[float, ...]) -> Iterator[_Size]:
     """The thinnest web of each level, between two openings and between an opening and a feature of the blank.
 
     Webs above WIDEST_WEB_MM are not looked for, whatever the rule: no disc is that thick.
     """
-    most_mm, round_mm, worth = min(limits_mm[-1], WIDEST_WEB_MM), disc.pattern.core_round_mm, disc.movement.plus_minus
+    most_mm, round_mm = min(limits_mm[-1], WIDEST_WEB_MM), disc.pattern.core_round_mm
     cores = _cores(disc, disc.radius_mm, disc.edge_angle_rad)
     tree = shapely.STRtree(cores)
     one, two = tree.query(cores, predicate="dwithin", distance=most_mm + 2 * round_mm)
@@ -250,7 +225,7 @@ def _webs(disc: Disc, limits_mm: tuple[float, ...]) -> Iterator[_Size]:
         yield _Size(
             what=f"The web between two openings on tracks {tracks[0]} and {tracks[1]}",
             size_mm=float(webs_mm[place]),
-            unsure_mm=_web_unsure_mm(disc, *pair),
+            unsure_mm=web_unsure_mm(disc, *pair),
             others_count=others_count,
             at=_at(disc, pair, tracks),
         )
@@ -265,7 +240,7 @@ def _webs(disc: Disc, limits_mm: tuple[float, ...]) -> Iterator[_Size]:
             yield _Size(
                 what=f"The web between an opening on track {track} and a {feature.purpose} {feature.shape}",
                 size_mm=float(webs_mm[place]),
-                unsure_mm=_feature_unsure_mm(disc, row) + worth(_radius(track - 1)) + worth(_WIDTH) / 2,
+                unsure_mm=feature_unsure_mm(disc, row) + edge_unsure_mm(disc, track - 1),
                 others_count=others_count,
                 at=_at(disc, (int(near[place]),), (track,)),
             )

@@ -5,7 +5,7 @@ movement that may have been measured; where they may be off by more than the mar
 that is said.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.movement import Movement
@@ -83,3 +83,13 @@ def judged(condition: Condition, movement: Movement) -> list[Finding]:
             remedy=condition.remedy if fails else f"Measure again to be sure; if it then fails: {condition.remedy}",
         )
     ]
+
+
+def unsure_advice(finding: Finding) -> Finding:
+    """The advice to measure again, of a finding whose limit is kept by less than its numbers are worth."""
+    return replace(
+        finding,
+        code=Code.MARGIN_UNSURE,
+        level=Level.ADVICE,
+        remedy=f"Measure again to be sure; if it then fails: {finding.remedy}",
+    )

@@ -5,7 +5,7 @@ from dataclasses import replace
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, told_worth
-from layout.mechanics.net_section import MetalLeft, metal_left
+from layout.mechanics.net_section import MetalLeft
 from layout.place.disc import Disc
 
 _PER_CENT = 100.0
@@ -23,7 +23,7 @@ def metal_holds_along_rays_and_rings(disc: Disc) -> list[Finding]:
     least = disc.cutter.net_section
     if least is None:
         return []
-    left = metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, disc.movement.disc.features)
+    left = disc.metal_left
     if left is None:
         return []
     findings = []

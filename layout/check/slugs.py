@@ -45,7 +45,7 @@ def _no_room(opening: HeldOpening, slugs: SlugBridges) -> Finding:
 
 def _on_a_fit(opening: HeldOpening, slugs: SlugBridges) -> Finding:
     return Finding(
-        code=Code.BRIDGE_HAS_NO_ROOM,
+        code=Code.BRIDGE_ON_FIT,
         level=Level.ADVICE,
         message=(
             f"The {opening.what} {_have(opening)} no room for {_bridges(slugs)} away from where the spindle or pin "

@@ -259,7 +259,7 @@ def test_no_lead_reaches_back_under_the_bridge_beside_its_line(length_mm: float)
 
 def slug_findings(movement: Movement, cutter: Cutter) -> list[Finding]:
     found = check(disc_of(movement, [(1, 1.0)], cutter))
-    return [finding for finding in found if finding.code is Code.BRIDGE_HAS_NO_ROOM]
+    return [finding for finding in found if finding.code in (Code.BRIDGE_HAS_NO_ROOM, Code.BRIDGE_ON_FIT)]
 
 
 def test_bridges_of_slugs_without_room_are_told_and_the_opening_stays_whole() -> None:
@@ -267,7 +267,7 @@ def test_bridges_of_slugs_without_room_are_told_and_the_opening_stays_whole() ->
     wide = held_with({"width_mm": 1.0, "least_slug_mm": 1.5})
     [slots, *_] = slug_findings(TARNLIGHT, wide)
 
-    assert slots.level == "warning"
+    assert (slots.code, slots.level) == (Code.BRIDGE_HAS_NO_ROOM, "warning")
     assert slots.message == (
         "The slots have no room, clear of the sides that work, for 2 bridges of 1.000 mm that would hold a slug of "
         "1.960 mm. None is left, and the slug may tip up in the head's way."
@@ -283,6 +283,7 @@ def test_bridges_on_a_fit_are_told_with_what_to_do() -> None:
     [location, centre] = slug_findings(FEATURED, HELD)
 
     assert {location.level, centre.level} == {"advice"}
+    assert {location.code, centre.code} == {Code.BRIDGE_ON_FIT}
     assert location.message.startswith("The location hole has no room for 2 bridges of 0.200 mm away from where")
     assert centre.message == (
         "The centre hole has no room for 2 bridges of 0.200 mm away from where the spindle or pin fits, which is all "
