@@ -85,7 +85,12 @@ _WRITERS: dict[str, Callable[[_Planned], bytes]] = {
     "work-sheet.pdf": lambda one: write_work_sheet(one.plan, one.laid_out, one.making),
     "layout.json": lambda one: write_layout_json(one.laid_out, despite_findings=one.plan.not_good),
     "report.json": lambda one: write_report(one.laid_out),
-    "making.json": lambda one: write_making(one.making, one.laid_out.fingerprint),
+    "making.json": lambda one: write_making(
+        one.making,
+        one.laid_out.fingerprint,
+        disc=(one.laid_out.disc_number, one.laid_out.disc_count),
+        order_number=one.laid_out.order_number,
+    ),
 }
 
 

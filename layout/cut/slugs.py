@@ -1,7 +1,7 @@
 """Bridges that hold slugs: holes and slots left open in a few places, so that none tips up into the head's way."""
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -56,6 +56,13 @@ def with_held_slugs(entity: Entity, disc: Disc) -> Iterator[Entity]:
         yield from _with_held_outlines(entity, disc)
     else:
         yield entity
+
+
+def loose_slug_count(entities: Iterable[Entity]) -> int:
+    """How many holes and slots are closed outlines, so that what they leave is held by nothing."""
+    inner = [entity for entity in entities if entity.layer in ("HOLES", "SLOTS")]
+    circles = sum(len(entity.radius_mm) for entity in inner if isinstance(entity, Circles))
+    return circles + sum(len(entity.points_mm) for entity in inner if isinstance(entity, Outlines) and entity.closed)
 
 
 def _with_held_circle(circle: Circles, disc: Disc) -> Iterator[Entity]:

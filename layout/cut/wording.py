@@ -31,6 +31,7 @@ class Words:
         is_record: Whether it is the record, which is never cut.
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
         order_number: The shop's; None for none.
+        held_slug_count: How many slugs of holes and slots hang on bridges.
     """
 
     title: str
@@ -39,6 +40,7 @@ class Words:
     is_record: bool
     part: str = ""
     order_number: str | None = None
+    held_slug_count: int = 0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -77,6 +79,7 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
         *([f"fingerprint: {words.fingerprint}"] if words.fingerprint else []),
         f"drawn from the {_side(cutter)}; origin at the disc centre; millimetres",
         *_how_it_is_drawn(disc),
+        *_how_slugs_are_held(cutter, words.held_slug_count),
         "index mark: at disc angle 0; its barb points the way the disc turns",
     ]
     kept = f"title: {words.title}" if is_mostly_lost(words.title) else None
@@ -134,6 +137,15 @@ def _side(cutter: Cutter) -> str:
 
 def _plainly(side: str) -> str:
     return side.replace("-", " ")
+
+
+def _how_slugs_are_held(cutter: Cutter, count: int) -> list[str]:
+    if cutter.bridges is None or cutter.bridges.slugs is None or not count:
+        return []
+    slugs = cutter.bridges.slugs
+    bridges = f"{'one bridge' if slugs.count == 1 else f'{slugs.count} bridges'} of {slugs.width_mm:g} mm"
+    held = "1 is" if count == 1 else f"{count} are"
+    return [f"slugs: {held} held, each by {bridges}; break them out by hand"]
 
 
 def _how_it_is_drawn(disc: Disc) -> list[str]:

@@ -13,7 +13,9 @@ DECIMALS = 6  # of mm, s and N: under what any of them is known to, and the same
 DECIMALS_KG = 9  # of a kilogram: a microgram
 
 
-def write_making(making: Making, fingerprint: str) -> bytes:
+def write_making(
+    making: Making, fingerprint: str, *, disc: tuple[int, int] = (1, 1), order_number: str | None = None
+) -> bytes:
     """The making as UTF-8 JSON, one line of the price, or one tool, to a line.
 
     What a figure means stands at layout.making.making. One that cannot be told is null, and `not_stated` names the
@@ -23,6 +25,8 @@ def write_making(making: Making, fingerprint: str) -> bytes:
     Args:
         making: What making the disc takes.
         fingerprint: Of the layout's inputs.
+        disc: Which disc of its set it is, from 1, and how many the set has.
+        order_number: The shop's; None for none.
 
     Raises:
         ValueError: A number is not finite: a fault of the program, never of an input.
@@ -32,6 +36,8 @@ def write_making(making: Making, fingerprint: str) -> bytes:
             "format": FORMAT,
             "fingerprint": fingerprint,
             "engine_version": ENGINE_VERSION,
+            "disc": {"number": disc[0], "of": disc[1]},
+            "order_number": order_number,
             "cut_length_mm": _rounded(making.cut_length_mm),
             "mark_length_mm": _rounded(making.mark_length_mm),
             "rapid_length_mm": _rounded(making.rapid_length_mm),

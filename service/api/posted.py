@@ -49,14 +49,14 @@ def machines_of(query: Query, parts: dict[str, bytes]) -> tuple[Source, Source]:
     Raises:
         ProblemError: A movement is missing; one of the two is given twice.
     """
-    movement = source_of("movement", query.movement, parts.get("movement"))
+    movement = _source_of("movement", query.movement, parts.get("movement"))
     if movement is None:
         raise ProblemError(
             name="parameter-missing",
             detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
             more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
         )
-    return movement, source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    return movement, _source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
 
 
 def _parts(request: Request, limits: Limits) -> dict[str, bytes]:
@@ -84,7 +84,7 @@ def _unsupported(detail: str, headers: dict[str, str]) -> ProblemError:
     )
 
 
-def source_of(name: str, named: str | None, written: bytes | None) -> Source | None:
+def _source_of(name: str, named: str | None, written: bytes | None) -> Source | None:
     """Where a document comes from: named in the query, brought as a part, or neither.
 
     Raises:

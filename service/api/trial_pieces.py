@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from flask import Blueprint, Request, Response, request
 
-from layout.documents import Cutter, Movement, shipped_movement_ids
+from layout.documents import Cutter, Movement
 from layout.trial_walk import trial_files
 from service.api.answers import JSON_MEDIA_TYPE, ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
@@ -14,9 +14,9 @@ from service.api.bodies import body_of
 from service.api.failures import too_large
 from service.api.multipart import parts_of
 from service.api.parameters import Query, read_query
-from service.api.posted import source_of
+from service.api.posted import machines_of
 from service.api.problems import ProblemError
-from service.documents import cutter_from, default_cutter, movement_from
+from service.documents import cutter_from, movement_from
 from service.limits import Limits
 
 FORM_MEDIA_TYPE = "multipart/form-data"
@@ -112,14 +112,7 @@ def _read(asked: Request, query: Query, limits: Limits) -> _Asked:
     for name, part in parts.items():
         if len(part) > limits.document_bytes:
             raise too_large(limits.document_bytes, f"the part {name}")
-    movement = source_of("movement", query.movement, parts.get("movement"))
-    if movement is None:
-        raise ProblemError(
-            name="parameter-missing",
-            detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
-            more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
-        )
-    cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    movement, cutter = machines_of(query, parts)
     return _Asked(movement=movement_from(movement), cutter=cutter_from(cutter))
 
 

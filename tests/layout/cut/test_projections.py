@@ -258,7 +258,7 @@ def test_a_laser_that_cannot_form_the_projections_cuts_none_of_them() -> None:
 
 def cut_numbers(drawing: Drawing) -> list[tuple[str, list[float], list[float]]]:
     """Layer, coordinates and bulges of all that is drawn but the lettering, in order."""
-    numbers = []
+    numbers: list[tuple[str, list[float], list[float]]] = []
     for entity in drawing.entities:
         match entity:
             case Outlines():

@@ -257,6 +257,21 @@ def test_no_lead_reaches_back_under_the_bridge_beside_its_line(length_mm: float)
         assert back @ ahead >= -1e-9 * np.linalg.norm(chord)
 
 
+def test_the_head_says_how_many_slugs_are_held_and_by_what() -> None:
+    # The slots of three projections, five holes and slots of the blank, the centre hole.
+    head = plan_of(disc_of(FEATURED, [(3, 20.0), (1, 3.0), (2, 8.0)], HELD)).disc.comments
+    # 8 and 10 mm less two kerfs are at least 7 mm; nothing else is.
+    few = plan_of(disc_of(FEATURED, [(3, 20.0)], held_with({"count": 1, "least_slug_mm": 7.0}))).record.comments
+
+    assert "slugs: 9 are held, each by 2 bridges of 0.2 mm; break them out by hand" in head
+    assert "slugs: 3 are held, each by one bridge of 0.2 mm; break them out by hand" in few
+
+
+@pytest.mark.parametrize("cutter", [LASER, held_with({"least_slug_mm": 20}), held_with({"width_mm": 9})])
+def test_a_head_of_a_disc_without_held_slugs_says_nothing_of_them(cutter: Cutter) -> None:
+    assert not any("slugs" in line for line in plan_of(disc_of(FEATURED, [(3, 20.0)], cutter)).disc.comments)
+
+
 def slug_findings(movement: Movement, cutter: Cutter) -> list[Finding]:
     found = check(disc_of(movement, [(1, 1.0)], cutter))
     return [finding for finding in found if finding.code in (Code.BRIDGE_HAS_NO_ROOM, Code.BRIDGE_ON_FIT)]
