@@ -148,7 +148,11 @@ def check_layers(layers: Mapping[str, Layer]) -> None:
 
 
 class Cutter(Part):
-    """A cutting machine and what it can do to the sheet."""
+    """A cutting machine and what it can do to the sheet.
+
+    `drawn_from` may be left out where the press states which way it `forms`: formed up, the star side lies above and
+    is drawn; formed down, the label side.
+    """
 
     format: Literal["discwright-cutter/1"]
     id: Identifier
@@ -175,6 +179,16 @@ class Cutter(Part):
     net_section: NetSection | None = None
     tolerance_class: ToleranceClass | None = None
     press: Press | None = None
+
+    @model_validator(mode="before")
+    @classmethod
+    def _shows_the_upper_face(cls, value: object) -> object:
+        """The side drawn where none is stated, by the way the press forms: tabs stand on the star side."""
+        press = value.get("press") if isinstance(value, Mapping) else None
+        if not isinstance(value, Mapping) or not isinstance(press, Mapping) or "drawn_from" in value:
+            return value
+        side = {"up": "star-side", "down": "label-side"}.get(str(press.get("forms")))
+        return value if side is None else {**value, "drawn_from": side}
 
     @model_validator(mode="after")
     def _parts_of_its_kind(self) -> Self:

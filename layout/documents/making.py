@@ -121,7 +121,9 @@ class Press(Part):
 
     `stripping_share` is the force that pulls the punch out, as a share of the cutting force. The
     words go into press.nc where they stand in braces: `{tool}` in `change_word`. `take_up_deg` is how far the
-    table goes past and comes back, where it must come onto every hit from one side.
+    table goes past and comes back, where it must come onto every hit from one side. `forms` is the way its
+    tools bend the tabs as the sheet lies on the machine; the drawing shows the upper face, unless the cutter states
+    another side.
     """
 
     capacity_n: Positive | None = None
@@ -131,6 +133,7 @@ class Press(Part):
     change_word: Word = "T{tool} M6"
     turns_one_way: bool = True
     take_up_deg: Annotated[PositiveAngle, Field(le=MOST_TAKE_UP_DEG)] = 1.0
+    forms: Literal["up", "down"] | None = None
 
     @model_validator(mode="after")
     def _change_names_the_tool(self) -> Self:

@@ -23,6 +23,7 @@ DECIMALS = 4  # of a millimetre and of a degree: 0.35 micrometres on a circle of
 # Of C in one block. At half a turn the shortest way is either way, so a move that is one but for the rounding of
 # both its ends is made in two.
 LONGEST_MOVE_DEG = FULL_TURN_DEG / 2 - 0.01
+_UPPER_FACE = {"up": "star side", "down": "label side"}  # by the way tools form: tabs stand on the star side
 LETTERS_OF_A_COMMENT = 60  # characters; a line that shows whole on a control's screen (common practice)
 # Left out of comments: what ISO 6983-1 gives a meaning of its own there, % and :, brackets, and small letters (from
 # memory of the standard; fewer signs than it allows do no harm).
@@ -100,6 +101,7 @@ def _head(plan: CutPlan, disc: Disc, groups: list[_Group]) -> list[str]:
         f"fingerprint {plan.fingerprint}",
         *_work_told(plan, disc, groups),
         f"seen from the {plan.drawn_from}",
+        *([] if press.forms is None else [f"tools form {press.forms}, the {_UPPER_FACE[press.forms]} lies above"]),
         "X slide, radius of the strike point in mm",
         "C table, angle of the strike point on disc.dxf in degrees",
         "C counts on over whole turns",

@@ -38,7 +38,7 @@ def how_formed(disc: Disc) -> list[str]:
     tool = fitting_tool(disc.movement, cutter)
     if tool is None:
         return [f"{cutter.id} states no way to make these projections: see the findings."]
-    return list(_lances(tool))
+    return list(_lances(tool, None if cutter.press is None else cutter.press.forms))
 
 
 def _slots(disc: Disc) -> Iterator[str]:
@@ -69,8 +69,10 @@ def _side(at_mm: float) -> str:
     return "ahead of" if at_mm > 0 else "behind"
 
 
-def _lances(tool: Tool) -> Iterator[str]:
-    yield f"Tool {tool.tool}: {tool.title}. One hit cuts three sides and forms the tab down to the star side."
+def _lances(tool: Tool, forms: str | None) -> Iterator[str]:
+    way = {"up": " upward: the star side lies above", "down": " downward: the label side lies above"}.get(forms or "")
+    stands = " to the star side." if way is None else f"{way} on the machine."
+    yield f"Tool {tool.tool}: {tool.title}. One hit cuts three sides and forms the tab{stands}"
     at = "on" if tool.edge_ahead_mm == 0 else f"{abs(tool.edge_ahead_mm):g} mm {_side(tool.edge_ahead_mm)}"
     yield (
         f"Footprint {tool.footprint_length_mm:g} × {tool.footprint_width_mm:g} mm, centred on the strike point; "

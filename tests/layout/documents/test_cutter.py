@@ -20,6 +20,32 @@ def test_the_first_cutter_is_the_laser() -> None:
     assert shipped_cutter_ids()[0] == "fibre-laser"
 
 
+@pytest.mark.parametrize(("forms", "side"), [("up", "star-side"), ("down", "label-side")])
+def test_a_press_shows_the_face_that_lies_above_as_its_tools_form(forms: str, side: str) -> None:
+    # A tab stands on the star side: pushed up, that side lies above; pushed down, the label side.
+    unstated = {**PRESS.model_dump(mode="json"), "press": {"forms": forms}}
+    del unstated["drawn_from"]
+
+    cutter = read_cutter(json.dumps(unstated))
+
+    assert cutter.drawn_from == side
+    assert read_cutter(cutter.model_dump_json()) == cutter
+
+
+@pytest.mark.parametrize("forms", ["up", "down"])
+def test_a_side_that_is_stated_is_drawn_whichever_way_a_press_forms(forms: str) -> None:
+    assert cutter_with({"press/forms": forms, "drawn_from": "label-side"}, PRESS).drawn_from == "label-side"
+
+
+@pytest.mark.parametrize("press", [{}, {"forms": None}, {"forms": "sideways"}, "press", None])
+def test_a_side_that_nothing_tells_must_be_stated(press: object) -> None:
+    unstated = {**PRESS.model_dump(mode="json"), "press": press}
+    del unstated["drawn_from"]
+
+    with pytest.raises(DocumentError, match="/drawn_from: "):
+        read_cutter(json.dumps(unstated))
+
+
 def test_a_cutter_may_name_its_own_layers() -> None:
     cutter = cutter_with({"layers": {"SLITS": {"name": "CUT-INSIDE", "colour": 3}}})
 

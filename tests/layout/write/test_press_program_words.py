@@ -147,6 +147,16 @@ def test_the_table_goes_back_as_far_as_the_press_states() -> None:
     assert "\nN3 G0 X44.9929 C361.4814\nN4 G0 X44.9929 C358.9814 (HIT 1)\n" in program
 
 
+@pytest.mark.parametrize(("forms", "above"), [("up", "STAR"), ("down", "LABEL"), (None, None)])
+def test_a_press_that_states_how_it_forms_is_told_which_side_lies_above(forms: str | None, above: str | None) -> None:
+    disc = disc_of(MOSSBROOK, cutter_with({"press/forms": forms}, PRESS), [(1, 0.0)])
+
+    program = write_press_program(planned(disc), disc).decode()
+
+    told = [line for line in program.splitlines() if "LIES ABOVE" in line]
+    assert told == ([] if forms is None else [f"(TOOLS FORM {forms.upper()}, THE {above} SIDE LIES ABOVE)"])
+
+
 def test_a_press_of_which_nothing_is_stated_has_the_usual_words() -> None:
     disc = disc_of(MOSSBROOK, cutter_with({"press": None}, PRESS), [(1, 0.0)])
 

@@ -185,6 +185,21 @@ def test_the_section_of_a_lance_hangs_on_the_nearer_end_of_its_footprint() -> No
     assert section.tip_mm == pytest.approx(-1.55)
 
 
+@pytest.mark.parametrize(
+    ("forms", "told"),
+    [
+        (None, "forms the tab to the star side."),
+        ("up", "forms the tab upward: the star side lies above on the machine."),
+        ("down", "forms the tab downward: the label side lies above on the machine."),
+    ],
+)
+def test_a_lance_is_told_with_the_way_its_press_forms(forms: str | None, told: str) -> None:
+    document = PRESS.model_dump(mode="json")
+    cutter = Cutter.model_validate(document | {"press": document["press"] | {"forms": forms}})
+
+    assert told in words_of(sheet_of(disc_of(FERNHOLLOW, cutter, [(5, 90.0)])))
+
+
 def test_slots_and_what_a_cutter_cannot_form_have_no_section() -> None:
     no_fold = Cutter.model_validate(LASER.model_dump() | {"fold": None})
     no_tool = Cutter.model_validate(PRESS.model_dump() | {"tools": ()})
