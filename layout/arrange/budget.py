@@ -20,6 +20,7 @@ LOOKS_TO_NARROW = 120  # by pluck of a part too crowded for all its states
 LOOKS_TO_BEGIN = 3_000  # by program, whatever its size
 LOOKS_TO_WRITE = 3  # by entry of a program's rows, and by spot lifted at a moment while they are sought
 LOOKS_TO_FIT = 60  # by pluck put down by hand
+ENTRIES_A_LOOK = 100  # loads of one spot at moments, worked out in one go
 LOOKS_TO_PLAY = 200  # by pluck nudged to its moment
 LOOKS_TO_JUDGE = 5  # by pluck held against every rule
 

@@ -79,6 +79,16 @@ class Drive:
         found = (-(-loads * left_ns // windows_ns)).astype(np.int64)
         return np.asarray(found.sum(axis=1))
 
+    def loads_of(self, track: int, before_ns: IntArray) -> IntArray:
+        """The same for plucks of one track, a good deal sooner: shape (n,)."""
+        found = np.zeros(len(before_ns), dtype=np.int64)
+        for lift in self.lifts[track]:
+            left_ns = np.where((before_ns >= 0) & (before_ns < lift.window_ns), lift.window_ns - before_ns, 0)
+            if self._is_vast:
+                left_ns = left_ns.astype(object)
+            found += (-(-lift.load * left_ns // lift.window_ns)).astype(np.int64)
+        return found
+
     @cached_property
     def load_table(self) -> IntArray:
         """Shape (tracks, most lifts of one). `load` of every lift, by track; 0 where a track has no more."""

@@ -151,47 +151,67 @@ class MomentsStanding:
 
 
 class LoadsStanding:
-    """What stands loads the disc with, at every moment at which one of some spots may be asked."""
+    """What stands loads the disc with, at every moment at which one of some spots may be asked.
+
+    Attributes:
+        entries: Moments looked at so far, each once for every spot: what it took.
+    """
 
     def __init__(self, problem: Problem, drive: Drive, spots: IntArray) -> None:
         self._problem = problem
         self._drive = drive
         self._moments_ns = np.unique(problem.asked_ns[spots])
         self._loads = np.zeros(len(self._moments_ns), dtype=np.int64)
+        self._standing = np.zeros(0, dtype=np.int64)  # the moments of what stands, as places, rising; some twice
+        self._at_release: dict[int, int] = {}  # by track
+        self.entries = 0
 
-    def put(self, spot: int) -> bool:
-        """Load the disc with one more spot; False where it is too much at any moment, and nothing is loaded then.
+    def fits(self, spot: int) -> bool:
+        """Whether with the spot the disc is loaded too much at no moment.
 
-        Between the releases of what stands the load only grows, so the moments at which nothing
-        that stands is asked are no worse than those at which something is.
+        Between the releases of what stands the load only grows towards the next of them, so the spot's own
+        moment and those of what stands are all that need be looked at. Mostly the spot's own decides.
         """
-        added = list(self._of(spot))
-        if any((self._loads[first:last] + load > self._drive.limit).any() for first, last, load in added):
+        limit = self._drive.limit
+        if self._loads[self._place(spot)] + self._load_at_release(spot) > limit:
             return False
-        for first, last, load in added:
-            self._loads[first:last] += load
+        for first, last, load in self._of(spot, self._moments_ns[self._standing]):
+            self.entries += last - first
+            if (self._loads[self._standing[first:last]] + load > limit).any():
+                return False
         return True
 
-    def take(self, spot: int) -> None:
-        """Take a spot that was put off again."""
-        for first, last, load in self._of(spot):
-            self._loads[first:last] -= load
+    def put(self, spot: int) -> None:
+        """Load the disc with one more spot."""
+        for first, last, load in self._of(spot, self._moments_ns):
+            self.entries += last - first
+            self._loads[first:last] += load
+        place = self._place(spot)
+        self._standing = np.insert(self._standing, np.searchsorted(self._standing, place), place)
 
-    def _of(self, spot: int) -> Iterator[tuple[int, int, IntArray]]:
-        """The loads of a spot at runs of moments, no moment twice."""
+    def _place(self, spot: int) -> int:
+        return int(np.searchsorted(self._moments_ns, self._problem.asked_ns[spot]))
+
+    def _load_at_release(self, spot: int) -> int:
+        """What a spot loads the disc with at its own moment, for the next turn too where its window reaches so far."""
+        track = int(self._problem.track[spot])
+        if track not in self._at_release:
+            before_ns = (0, self._problem.turn_ns)
+            self._at_release[track] = sum(self._drive.load(track, one_ns) for one_ns in before_ns)
+        return self._at_release[track]
+
+    def _of(self, spot: int, moments_ns: IntArray) -> Iterator[tuple[int, int, IntArray]]:
+        """The loads of a spot at runs of these moments, rising, no moment in two runs."""
         problem, drive = self._problem, self._drive
         asked_ns, track = int(problem.asked_ns[spot]), int(problem.track[spot])
         releases_ns = (asked_ns, asked_ns + problem.turn_ns)
-        widest_ns = int(drive.window_table[track].max(initial=0))
+        widest_ns = max((lift.window_ns for lift in drive.lifts[track]), default=0)
         if widest_ns > problem.turn_ns:
-            this_ns, next_ns = (released_ns - self._moments_ns for released_ns in releases_ns)
-            yield 0, len(self._moments_ns), self._load(track, this_ns) + self._load(track, next_ns)
+            this_ns, next_ns = (released_ns - moments_ns for released_ns in releases_ns)
+            yield 0, len(moments_ns), drive.loads_of(track, this_ns) + drive.loads_of(track, next_ns)
             return
         for released_ns in releases_ns:
-            first = int(np.searchsorted(self._moments_ns, released_ns - widest_ns, side="right"))
-            last = int(np.searchsorted(self._moments_ns, released_ns, side="right"))
+            first = int(np.searchsorted(moments_ns, released_ns - widest_ns, side="right"))
+            last = int(np.searchsorted(moments_ns, released_ns, side="right"))
             if first < last:
-                yield first, last, self._load(track, released_ns - self._moments_ns[first:last])
-
-    def _load(self, track: int, before_ns: IntArray) -> IntArray:
-        return self._drive.loads(np.full(len(before_ns), track), before_ns)
+                yield first, last, drive.loads_of(track, released_ns - moments_ns[first:last])

@@ -16,7 +16,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from layout.arrange.broken import broken_by
-from layout.arrange.budget import LOOKS_TO_FIT, LOOKS_TO_JUDGE, LOOKS_TO_NARROW, LOOKS_TO_PLAY, LOOKS_TO_WRITE, Budget
+from layout.arrange.budget import LOOKS_TO_JUDGE, LOOKS_TO_NARROW, LOOKS_TO_PLAY, LOOKS_TO_WRITE, Budget
 from layout.arrange.by_time import Best, Stuck, best_by_time, narrow_by_time
 from layout.arrange.coupled import MOST_LIFTED, best_coupled, worth_of
 from layout.arrange.fitting import fitted
@@ -315,8 +315,7 @@ class Solving:
         Rulings are followed or refused for what is true, so where putting spots down one after the
         other finds no room for those that must sound, they are looked for whatever that costs.
         """
-        budget.spend_looks(LOOKS_TO_FIT * len(plucks))
-        spots = fitted(self.problem, plucks, preferred)
+        spots = fitted(self.problem, plucks, preferred, budget)
         forced = plucks[self.problem.must_sound[plucks]]
         if spots is not None or not len(forced):
             return spots
