@@ -4,6 +4,7 @@ import numpy as np
 
 from layout.arrange.arrangement import NO_NOTE, Arrangement
 from layout.documents.pitch import pitch_of
+from layout.mechanics.depth import depth_band
 from layout.place.disc import Disc
 from layout.read.score import Score
 from layout.report.bars import worst_bars
@@ -47,7 +48,13 @@ def report_on(score: Score, arrangement: Arrangement, disc: Disc) -> Report:
         load=load,
         no_load_because=None if load else NO_STIFFNESS if disc.projection_count else NOTHING_PLUCKED,
         drive=driving_of(disc),
+        depth=depth_band(disc.movement, _bend_radius_mm(disc)),
     )
+
+
+def _bend_radius_mm(disc: Disc) -> float | None:
+    fold = disc.cutter.fold
+    return None if fold is None or disc.pattern.making != "fold" else fold.inside_radius_mm
 
 
 def _peak_load(arrangement: Arrangement) -> PeakLoad | None:
