@@ -20,12 +20,11 @@ from layout.cut.slugs import with_held_slugs
 from layout.cut.touring import short_round_trip
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats, frozen_ints
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.bridging import gap_mm, gaps_in
 from layout.mechanics.hits import Hits
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
-from layout.place.disc import Disc
 
 _SAME_PLACE_MM = 1e-6  # mm; a nanometre: an arc whose centre lies so near the origin goes round it
 _ON_AN_ARC = 8  # places that stand for an arc where openings are held against each other
@@ -75,15 +74,9 @@ def plan_piece(drawing: Drawing, movement: Movement, cutter: Cutter) -> PieceCut
 
 def _holes(movement: Movement, cutter: Cutter) -> list[Entity]:
     """The blank's holes as on a disc, slugs held and led in, as drawn."""
-    bare = Disc(
-        movement=movement,
-        cutter=cutter,
-        turning=turning_of(movement),
-        pattern=pattern_of(movement, cutter),
-        track_index=frozen_ints([]),
-        edge_angle_rad=frozen_floats([]),
-    )
-    held = [part for hole in holes(movement) for part in with_held_slugs(as_the_beam_runs(hole, cutter), bare)]
+    held = [
+        part for hole in holes(movement) for part in with_held_slugs(as_the_beam_runs(hole, cutter), movement, cutter)
+    ]
     led_in = [part for entity in held for part in with_leads(entity, cutter)]
     return [mirrored(entity) for entity in led_in] if cutter.drawn_from == "star-side" else led_in
 

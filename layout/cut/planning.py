@@ -93,7 +93,7 @@ def _cut(disc: Disc, order: IntArray) -> tuple[tuple[Entity, ...], int]:
     projections, blank = cut_projections(disc, order), holes(disc.movement)
     inner = (*blank, *projections) if disc.cutter.kind == "punch-press" else (*projections, *blank)
     drawn = [as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement))]
-    slugs_held = [part for entity in drawn for part in with_held_slugs(entity, disc)]
+    slugs_held = [part for entity in drawn for part in with_held_slugs(entity, disc.movement, disc.cutter)]
     held = (part for entity in slugs_held for part in with_bridges(entity, disc.cutter))
     led_in = tuple(part for entity in held for part in with_leads(entity, disc.cutter))
     return led_in, loose_slug_count(drawn) - loose_slug_count(slugs_held)

@@ -9,7 +9,7 @@ import numpy as np
 from layout.cut.blank import turned_mm
 from layout.cut.plan import Circles, Entity, LayerName, Outlines
 from layout.documents.cutter import SAME_PLACE_MM, Cutter
-from layout.documents.movement import Feature
+from layout.documents.movement import Feature, Movement
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.mechanics.lead import clear_of_lines_mm, pierced_inside_mm
 from layout.mechanics.slugs import (
@@ -22,7 +22,6 @@ from layout.mechanics.slugs import (
     slug_is_held,
     where_on_feature,
 )
-from layout.place.disc import Disc
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -36,7 +35,7 @@ class _Held:
     leads: tuple[complex | None, ...]
 
 
-def with_held_slugs(entity: Entity, disc: Disc) -> Iterator[Entity]:
+def with_held_slugs(entity: Entity, movement: Movement, cutter: Cutter) -> Iterator[Entity]:
     """Holes and slots whose slug is held as open lines between the bridges, each opening by itself; else as it is.
 
     The lines of an opening follow one another round it, each with its lead before it where the cutter wants leads and
@@ -44,16 +43,17 @@ def with_held_slugs(entity: Entity, disc: Disc) -> Iterator[Entity]:
 
     Args:
         entity: Seen from the label side, as it is drawn.
-        disc: Its cutter says what is held, its movement what each hole is for.
+        movement: What each hole is for.
+        cutter: What is held, and by which bridges.
     """
-    if disc.cutter.bridges is None or disc.cutter.bridges.slugs is None:
+    if cutter.bridges is None or cutter.bridges.slugs is None:
         yield entity
     elif isinstance(entity, Circles) and entity.layer == "HOLES":
         for centre_mm, radius_mm in zip(entity.centres_mm, entity.radius_mm.tolist(), strict=True):
             one = replace(entity, centres_mm=frozen_floats(centre_mm[None]), radius_mm=frozen_floats([radius_mm]))
-            yield from _with_held_circle(one, disc)
+            yield from _with_held_circle(one, movement, cutter)
     elif isinstance(entity, Outlines) and entity.closed and entity.layer in ("HOLES", "SLOTS"):
-        yield from _with_held_outlines(entity, disc)
+        yield from _with_held_outlines(entity, movement, cutter)
     else:
         yield entity
 
@@ -65,39 +65,39 @@ def loose_slug_count(entities: Iterable[Entity]) -> int:
     return circles + sum(len(entity.points_mm) for entity in inner if isinstance(entity, Outlines) and entity.closed)
 
 
-def _with_held_circle(circle: Circles, disc: Disc) -> Iterator[Entity]:
+def _with_held_circle(circle: Circles, movement: Movement, cutter: Cutter) -> Iterator[Entity]:
     centre_mm, radius_mm = circle.centres_mm[0], float(circle.radius_mm[0])
-    feature = _feature_at(centre_mm, disc)
-    finished_mm = disc.movement.disc.centre_hole_mm if feature is None else feature.width_mm
+    feature = _feature_at(centre_mm, movement)
+    finished_mm = movement.disc.centre_hole_mm if feature is None else feature.width_mm
     where: Where = "anywhere" if feature is None else where_on_feature(feature)
     found = None
-    if slug_is_held(disc.cutter, finished_mm, finished_mm):
-        found = circle_with_gaps(radius_mm, where, disc.cutter)
+    if slug_is_held(cutter, finished_mm, finished_mm):
+        found = circle_with_gaps(radius_mm, where, cutter)
     if found is None:
         yield circle
         return
     points_mm, bulges, gaps = found
     placed_mm = turned_mm(points_mm, np.array([math.atan2(centre_mm[1], centre_mm[0])])) + centre_mm
     outline = Outlines(layer="HOLES", points_mm=frozen_floats(placed_mm), bulges=bulges, closed=True)
-    yield from _open_lines(outline, _held(outline, gaps, disc.cutter))
+    yield from _open_lines(outline, _held(outline, gaps, cutter))
 
 
-def _with_held_outlines(outlines: Outlines, disc: Disc) -> Iterator[Entity]:
+def _with_held_outlines(outlines: Outlines, movement: Movement, cutter: Cutter) -> Iterator[Entity]:
     """Outlines of one make are held alike, but for a slot that two rows of features share and use differently."""
-    projection = disc.movement.projection
+    projection = movement.projection
     known: dict[tuple[float, float, Where], _Held | None] = {}
     for points_mm in outlines.points_mm:
         one = replace(outlines, points_mm=frozen_floats(points_mm[None]))
         if outlines.layer == "SLOTS":
             key: tuple[float, float, Where] = (projection.length_mm or 0.0, projection.width_mm, "slot")
         else:
-            feature = _feature_at(points_mm.mean(axis=0), disc)
+            feature = _feature_at(points_mm.mean(axis=0), movement)
             key = (0.0, 0.0, "ends") if feature is None else _key(feature)
         if key not in known:
             gaps = None
-            if slug_is_held(disc.cutter, *key[:2]):
-                gaps = gaps_on_outline(points_mm, outlines.bulges, key[2], disc.cutter)
-            known[key] = None if gaps is None else _held(one, gaps, disc.cutter)
+            if slug_is_held(cutter, *key[:2]):
+                gaps = gaps_on_outline(points_mm, outlines.bulges, key[2], cutter)
+            known[key] = None if gaps is None else _held(one, gaps, cutter)
         held = known[key]
         yield from [one] if held is None else _open_lines(one, held)
 
@@ -106,10 +106,10 @@ def _key(feature: Feature) -> tuple[float, float, Where]:
     return feature.length_mm, feature.width_mm, where_on_feature(feature)
 
 
-def _feature_at(centre_mm: FloatArray, disc: Disc) -> Feature | None:
+def _feature_at(centre_mm: FloatArray, movement: Movement) -> Feature | None:
     """What a hole or slot of the blank is for, the strictest use first; None for the centre hole."""
     found = []
-    for feature in disc.movement.disc.features:
+    for feature in movement.disc.features:
         angle_rad = np.radians(feature.angles_deg)
         away_mm = np.hypot(
             feature.radius_mm * np.cos(angle_rad) - centre_mm[0], feature.radius_mm * np.sin(angle_rad) - centre_mm[1]
