@@ -4,7 +4,7 @@ import pytest
 
 from layout import walk
 from layout.check.finding import Code
-from layout.documents import read_movement, read_settings
+from layout.documents import Movement, read_movement, read_settings
 from layout.errors import MidiReadError
 from service.demo.compose import demo_tune
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, movement_with
@@ -106,10 +106,10 @@ def test_a_reason_marks_nothing_on_a_disc_that_is_good_to_cut() -> None:
 
 
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
-def test_the_same_inputs_give_the_same_bytes(movement: object) -> None:
-    first = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")  # type: ignore[arg-type] - parametrised
+def test_the_same_inputs_give_the_same_bytes(movement: Movement) -> None:
+    first = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")
 
-    again = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")  # type: ignore[arg-type] - parametrised
+    again = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")
 
     assert again == first
 

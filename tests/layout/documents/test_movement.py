@@ -54,7 +54,7 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
 
     movement = movement_with({"star_wheel/axis_depth_mm": stated})
 
-    assert movement.star_wheel.axis_depth_mm == 3.75  # type: ignore[union-attr] - the plain movement's wheel is computed
+    assert movement.star_wheel.axis_depth_mm == 3.75  # type: ignore[union-attr]  # the plain movement's wheel is computed
     assert movement.plus_minus("/star_wheel/axis_depth_mm") == 0.04
     assert movement.plus_minus("/star_wheel/tip_radius_mm") == 0.0
 

@@ -58,7 +58,7 @@ def test_a_turning_disc_brings_the_edge_to_its_release_at_its_moment(movement: M
 
         def edge(time_s: float, alpha: float = alpha, radius_mm: float = radius_mm, sign: int = sign) -> complex:
             turned = math.radians(movement.before_music_deg) + 2 * math.pi * time_s / movement.revolution_s
-            return complex(math.cos(alpha), math.sin(alpha)) * np.exp(-1j * sign * turned) * radius_mm
+            return radius_mm * complex(math.cos(alpha), math.sin(alpha)) * complex(np.exp(-1j * sign * turned))
 
         early, late = sounds_s - 0.5, sounds_s + 0.5
         assert edge(sounds_s).real > 0

@@ -4,6 +4,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from layout.documents import Movement
 from layout.place import place
 from layout.play import play
 from tests.layout.examples import LASER, PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
@@ -40,12 +41,12 @@ def test_the_metal_left_of_a_disc_is_worked_out_once_and_of_another_disc_anew() 
 
 
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
-def test_moving_one_note_moves_one_projection_and_nothing_else(movement: object) -> None:
+def test_moving_one_note_moves_one_projection_and_nothing_else(movement: Movement) -> None:
     plucks = [(1, 2.0), (5, 2.0), (9, 11.5), (17, 30.0)]
     moved = [(1, 2.0), (5, 2.0), (9, 11.75), (17, 30.0)]
 
-    before = place(arrangement_of(plucks), movement, LASER)  # type: ignore[arg-type] - parametrised movements
-    after = place(arrangement_of(moved), movement, LASER)  # type: ignore[arg-type] - parametrised movements
+    before = place(arrangement_of(plucks), movement, LASER)
+    after = place(arrangement_of(moved), movement, LASER)
 
     turned = np.angle(np.exp(1j * (after.edge_angle_rad - before.edge_angle_rad)))
     expected = after.turning.direction * 2 * math.pi * 0.25 / after.movement.revolution_s
