@@ -36,12 +36,12 @@ def plan_sheets(job: SheetJob, drawings: Mapping[str, bytes] | None = None) -> S
     if total_mib > LIMITS.drawing_mib:
         message = f"the drawings are {total_mib:.1f} MiB, {LIMITS.drawing_mib} are allowed; make several jobs of it"
         raise DocumentError(document="sheet job", problems=(Problem(pointer="/discs", message=message),))
-    return arrange_on_sheets(job, {disc_id: _read(disc_id, dxf) for disc_id, dxf in sorted(given.items())})
+    return arrange_on_sheets(job, {disc_id: _read(disc_id, dxf, job) for disc_id, dxf in sorted(given.items())})
 
 
-def _read(disc_id: str, dxf: bytes) -> DrawnDisc:
+def _read(disc_id: str, dxf: bytes, job: SheetJob) -> DrawnDisc:
     try:
-        return read_as_drawn(dxf)
+        return read_as_drawn(dxf, job.layers)
     except DrawingReadError as error:
         problem = Problem(pointer="", message=str(error).removeprefix("drawing: "))
         raise DocumentError(document=f"drawing of {disc_id}", problems=(problem,)) from error

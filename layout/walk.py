@@ -6,7 +6,7 @@ read → arrange → place → play → check → report → cut → making → 
 import hashlib
 import json
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -14,8 +14,11 @@ from layout.arrange import Clock, arrange_discs
 from layout.arrange.arrangement import Arrangement
 from layout.check import WholeTune, check
 from layout.check.finding import Finding, stands
+from layout.check.labels import labels_stand
 from layout.cut import plan_cuts
+from layout.cut.labelling import marks_without_room
 from layout.cut.plan import CutPlan
+from layout.cut.wording import Words
 from layout.documents import Cutter, Movement, Settings
 from layout.errors import DocumentError, Problem
 from layout.limits import limits_told
@@ -82,7 +85,12 @@ _WRITERS: dict[str, Callable[[_Planned], bytes]] = {
     "work-sheet.pdf": lambda one: write_work_sheet(one.plan, one.laid_out, one.making),
     "layout.json": lambda one: write_layout_json(one.laid_out, despite_findings=one.plan.not_good),
     "report.json": lambda one: write_report(one.laid_out),
-    "making.json": lambda one: write_making(one.making, one.laid_out.fingerprint),
+    "making.json": lambda one: write_making(
+        one.making,
+        one.laid_out.fingerprint,
+        disc=(one.laid_out.disc_number, one.laid_out.disc_count),
+        order_number=one.laid_out.order_number,
+    ),
 }
 
 
@@ -179,7 +187,7 @@ def lay_out_discs(
     arrangements = arrange_discs(score, movement, settings, spacing, clock)
     whole = _whole_tune(score, arrangements)
     discs = [place(arrangement, movement, cutter) for arrangement in arrangements]
-    return tuple(
+    laid_out = (
         LaidOut(
             title=settings.title or score.title or "untitled tune",
             fingerprint=fingerprint_of(tune, movement, cutter, settings, number),
@@ -195,6 +203,22 @@ def lay_out_discs(
         )
         for number, (arrangement, disc) in enumerate(zip(arrangements, discs, strict=True), start=1)
     )
+    return tuple(map(_with_missing_labels, laid_out))
+
+
+def _with_missing_labels(laid_out: LaidOut) -> LaidOut:
+    """The layout with a finding where a label has no place on its disc, the warning of a faulty one counted in."""
+    words = Words(
+        title=laid_out.title,
+        fingerprint=laid_out.fingerprint,
+        not_good=None if laid_out.good_to_cut else "",
+        is_record=False,
+        part=laid_out.part,
+        order_number=laid_out.order_number,
+    )
+    without_room = marks_without_room(laid_out.disc, words)
+    missing = labels_stand(laid_out.disc, title=laid_out.title, without_room=without_room)
+    return replace(laid_out, findings=(*laid_out.findings, *missing))
 
 
 def _whole_tune(score: Score, arrangements: tuple[Arrangement, ...]) -> WholeTune:

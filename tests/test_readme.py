@@ -33,11 +33,11 @@ CURL = [command for block in BLOCKS for command in re.findall(r"^curl .*?[^\\]$"
 COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith(("discwright ", "printf "))]
 
 LASER_FILES = walk.files_for(shipped_cutter("fibre-laser"))
-TRIAL_FILES = {"trial-piece.dxf", "trial-piece.json", "measure.pdf"}
+TRIAL_FILES = {"trial-piece.dxf", "trial-piece.svg", "trial-piece.json", "measure.pdf"}
 # What the archives of the examples hold, their names in order.
 ARCHIVES = {
     "demo/discs.zip": " ".join(rf"{disc}/\S+" for disc in (1, 2) for _ in LASER_FILES),
-    "demo/trial-piece.zip": r"measure_\S+\.pdf trial-piece_\S+\.dxf trial-piece_\S+\.json",
+    "demo/trial-piece.zip": r"measure_\S+\.pdf trial-piece_\S+\.dxf trial-piece_\S+\.json trial-piece_\S+\.svg",
     "demo/sheets-to-cut.zip": r"parts\.csv sheet-1\.dxf sheets\.json",
     "demo/sheets.zip": r"parts\.csv sheet-1\.dxf sheets\.json",
 }

@@ -7,12 +7,12 @@ webs; loads at every asked moment, and what nudges pile up; extra plucks with th
 """
 
 from collections import defaultdict
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import numpy as np
 
 from layout.arrange.integer_program import Row
-from layout.arrange.loads import hard_moments
+from layout.arrange.loads import hard_moments, heavy_moments, lifted_count
 from layout.arrange.moments_kept import Overrun
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import NO_PLUCK, Problem
@@ -22,7 +22,13 @@ _STEPS_TOGETHER = 6  # spots on one track that a row from the start lets through
 
 
 class Columns:
-    """The columns of a group of plucks, and the rows between them."""
+    """The columns of a group of plucks, and the rows between them.
+
+    Attributes:
+        worth: Shape (columns,). What each column is worth, below 0 where it costs.
+        most: No choice is worth more.
+        lifted: How many spots lifted at moments the rows of the drive look at.
+    """
 
     def __init__(self, problem: Problem, plucks: IntArray) -> None:
         self._problem = problem
@@ -45,6 +51,7 @@ class Columns:
                 np.zeros(len(self._spreads), dtype=np.int64),
             ]
         ).astype(np.int64)
+        self.lifted = lifted_count(problem, self._spots)
         self.most = sum(max((int(problem.worth[spot]) for spot in one), default=0) for one in ranges)
 
     def spots_of(self, ones: IntArray) -> tuple[int, ...]:
@@ -72,7 +79,10 @@ class Columns:
             yield Row(columns=[column[one], column[two]], most=1)
         if problem.drive is not None:
             for spots, loads in hard_moments(problem, self._spots):
-                yield Row(columns=[column[spot] for spot in spots], coefficients=loads, most=problem.drive.limit)
+                limit = problem.drive.limit
+                # More than too much is as bad as a little too much, and rounds less well.
+                most = [min(load, limit + 1) for load in loads]
+                yield Row(columns=[column[spot] for spot in spots], coefficients=most, most=limit)
         yield from self._piled_rows()
         yield from self._spread_rows()
 
@@ -84,6 +94,18 @@ class Columns:
             if held is not None:
                 return held
         return Row(columns=[self._column[spot] for spot in path], most=len(path) - 1)
+
+    def load_cuts(self, spots: Sequence[int]) -> list[Row]:
+        """A row for every moment at which chosen spots load the disc too much: the heaviest of them, as few as do."""
+        problem, rows = self._problem, []
+        if problem.drive is None:
+            return []
+        for there, loads in heavy_moments(problem, np.array(spots, dtype=np.int64)):
+            heaviest = sorted(range(len(there)), key=lambda place: (-loads[place], there[place]))
+            enough = np.searchsorted(np.cumsum([loads[place] for place in heaviest]), problem.drive.limit, side="right")
+            cover = [self._column[there[place]] for place in heaviest[: int(enough) + 1]]
+            rows.append(Row(columns=cover, most=len(cover) - 1))
+        return rows
 
     def _held(self, path: tuple[int, ...], *, wraps: bool) -> Row | None:
         """All spots that lie wholly in the stretch of the path: it holds fewer than the path has."""

@@ -9,7 +9,6 @@ from layout.arrange.arrangement import Arrangement, LeftOut, LeftOutReason, Wort
 from layout.arrange.asking import Asked
 from layout.arrange.comb import Comb
 from layout.arrange.loading import greatest_load
-from layout.arrange.playing import played
 from layout.arrange.problem import NS_PER_S, Problem
 from layout.arrange.reasons import reasons_of
 from layout.arrange.searching import Found
@@ -35,7 +34,7 @@ class Finishing:
     def arrangement(self, asked: Asked, problem: Problem, solved: Solved) -> Arrangement:
         """The arrangement of one disc."""
         wanted, semitones = asked.wanted, self.found.way.semitones
-        with_moments = played(problem, solved.spots)
+        with_moments = solved.played
         spots = np.array(with_moments.spots, dtype=np.int64)
         pluck, track = problem.pluck[spots], problem.track[spots]
         asked_s = wanted.asked_s[pluck]

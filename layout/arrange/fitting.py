@@ -3,32 +3,42 @@
 Good, quick and not the best: where a search for the best begins, and what it falls back on.
 """
 
-from bisect import bisect_left, insort
 from collections import defaultdict
 from collections.abc import Sequence
 
 import numpy as np
 
-from layout.arrange.broken import breaches
-from layout.arrange.loads import overloads, piled_up
-from layout.arrange.moments_kept import Overrun, moments_kept
+from layout.arrange.budget import ENTRIES_A_LOOK, LOOKS_TO_FIT, Budget
 from layout.arrange.problem import NO_PLUCK, Problem
+from layout.arrange.put_down import LoadsStanding, MomentsStanding
 from layout.mechanics.arrays import IntArray
 
+MOST_LOOKS_TO_FIT = 4_000_000  # looks for one choice: some seconds; a full disc of ordinary teeth takes a tenth of it
 
-def fitted(problem: Problem, plucks: IntArray, preferred: Sequence[int]) -> tuple[int, ...] | None:
+
+def fitted(
+    problem: Problem, plucks: IntArray, preferred: Sequence[int], budget: Budget | None = None
+) -> tuple[int, ...] | None:
     """Spots of these plucks that keep every rule, none of which could be added to; None where a forced one has no room.
 
     Plucks that must sound come first, then preferred spots, then the others, heavier before lighter.
+    Where that takes MOST_LOOKS_TO_FIT, the plucks still to come are left out: the lightest.
 
     Args:
         problem: The rules.
         plucks: Rising.
         preferred: Spots to keep where they fit.
+        budget: What this takes is taken off; what is left of it does not matter, since some choice there must be.
     """
-    fitting = _Fitting(problem)
+    fitting = _Fitting(problem, plucks)
+    spots = _put_down(fitting, problem, plucks, set(preferred))
+    if budget is not None:
+        budget.spend_looks(fitting.looks)
+    return spots
+
+
+def _put_down(fitting: "_Fitting", problem: Problem, plucks: IntArray, wanted: set[int]) -> tuple[int, ...] | None:
     must = problem.must_sound[plucks]
-    wanted = set(preferred)
     for pluck in plucks[must].tolist():
         if not fitting.put_best(pluck, wanted):
             return None
@@ -37,6 +47,8 @@ def fitted(problem: Problem, plucks: IntArray, preferred: Sequence[int]) -> tupl
     extra = problem.parent[others] != NO_PLUCK
     kept = np.isin(others, problem.pluck[list(wanted)]) if wanted else np.zeros(len(others), dtype=np.bool_)
     for pluck in others[np.lexsort((others, -heaviest, ~kept, extra))].tolist():
+        if fitting.looks > MOST_LOOKS_TO_FIT:
+            break
         fitting.put_best(pluck, wanted)
     return fitting.spots
 
@@ -49,9 +61,17 @@ def _heaviest(problem: Problem, pluck: int) -> int:
 class _Fitting:
     """The spots put down so far, and whether one more fits."""
 
-    def __init__(self, problem: Problem) -> None:
+    def __init__(self, problem: Problem, plucks: IntArray) -> None:
         self._problem = problem
-        self._on_track: dict[int, list[int]] = defaultdict(list)
+        self._moments = MomentsStanding(problem)
+        self._loads = None
+        if problem.drive is not None:
+            self._loads = LoadsStanding(problem, problem.drive, np.flatnonzero(np.isin(problem.pluck, plucks)))
+        self._piled: dict[int, list[tuple[int, ...]]] = defaultdict(list)
+        for pile in problem.piled:
+            for spot in pile:
+                self._piled[spot].append(pile)
+        self._tried = 0
         self._spot_of: dict[int, int] = {}
         self._spread_of: dict[int, int] = {}  # by chord
 
@@ -60,9 +80,16 @@ class _Fitting:
         """The spots put down, by pluck."""
         return tuple(spot for _, spot in sorted(self._spot_of.items()))
 
+    @property
+    def looks(self) -> int:
+        """Looks that all that was put down or tried so far takes."""
+        entries = 0 if self._loads is None else self._loads.entries
+        return LOOKS_TO_FIT * self._tried + entries // ENTRIES_A_LOOK
+
     def put_best(self, pluck: int, wanted: set[int]) -> bool:
         """Put a pluck on the first of its spots that fits, wanted ones first, then by worth; False where none does."""
         problem = self._problem
+        self._tried += 1
         parent = int(problem.parent[pluck])
         if parent != NO_PLUCK and parent not in self._spot_of:
             return False
@@ -70,47 +97,28 @@ class _Fitting:
         for spot in sorted(
             spots, key=lambda one: (one not in wanted, int(problem.spread[one]), -int(problem.worth[one]))
         ):
-            if self._fits(spot):
-                insort(self._on_track[int(problem.track[spot])], spot)
-                self._spot_of[pluck] = spot
-                self._spread_of[int(problem.chord[pluck])] = int(problem.spread[spot])
+            if self._put(pluck, spot):
                 return True
         return False
 
-    def _fits(self, spot: int) -> bool:
-        problem = self._problem
-        spread = int(problem.spread[spot])
-        if self._spread_of.get(int(problem.chord[problem.pluck[spot]]), spread) != spread:
+    def _put(self, pluck: int, spot: int) -> bool:
+        chord, spread = int(self._problem.chord[pluck]), int(self._problem.spread[spot])
+        if self._spread_of.get(chord, spread) != spread or self._piles_up(pluck, spot):
             return False
-        if self._is_too_near(spot):
+        if self._moments.is_in_the_way(spot) or (self._loads is not None and not self._loads.fits(spot)):
             return False
-        company = problem.company[int(problem.track[spot])]
-        there = [one for track in company for one in self._on_track[track]]
-        if isinstance(moments_kept(problem, [*there, spot]), Overrun):
+        if not self._moments.put(spot):
             return False
-        return not breaches(problem, [*there, spot]) and self._carries(spot)
+        if self._loads is not None:
+            self._loads.put(spot)
+        self._spot_of[pluck] = spot
+        self._spread_of[chord] = spread
+        return True
 
-    def _is_too_near(self, spot: int) -> bool:
-        """Whether a neighbour on the track is nearer than any nudging makes up for: a quick answer, mostly enough."""
-        problem = self._problem
-        row = self._on_track[int(problem.track[spot])]
-        place = bisect_left(row, spot)
-        before = row[place - 1] if place else None
-        after = row[place] if place < len(row) else None
+    def _piles_up(self, pluck: int, spot: int) -> bool:
+        """Whether with the spot every pluck of a pile would have its spot in it."""
+        of = self._problem.pluck
         return any(
-            earlier is not None
-            and later is not None
-            and problem.latest_ns[later] - problem.earliest_ns[earlier] < problem.least_ns[earlier]
-            for earlier, later in ((before, spot), (spot, after))
+            all(self._spot_of.get(other) in pile for other in {int(of[one]) for one in pile} - {pluck})
+            for pile in self._piled.get(spot, ())
         )
-
-    def _carries(self, spot: int) -> bool:
-        """Whether the drive carries one more pluck."""
-        problem = self._problem
-        if problem.drive is None:
-            return True
-        near_ns = 2 * problem.drive.widest_ns
-        standing = np.array([*self._spot_of.values(), spot], dtype=np.int64)
-        apart_ns = np.abs(problem.asked_ns[standing] - problem.asked_ns[spot])
-        near = (apart_ns < near_ns) | (problem.turn_ns - apart_ns < near_ns)
-        return not overloads(problem, standing[near]) and not piled_up(problem, standing)

@@ -57,6 +57,21 @@ def nudged(problem: Problem, spots: Sequence[int], heavy: Sequence[Sequence[int]
     return _put_right(problem, spots, at_ns)
 
 
+def nudged_later(problem: Problem, spots: Sequence[int]) -> dict[int, int]:
+    """When each chosen spot sounds, found in no time: as soon as may be from the moment asked for on.
+
+    Where that cannot be, as soon as may be in its window. Chords and order are not looked at.
+
+    Args:
+        problem: The rules.
+        spots: A choice that keeps every rule.
+
+    Raises:
+        ValueError: As for `nudged`.
+    """
+    return _put_right(problem, spots, {spot: int(problem.asked_ns[spot]) for spot in spots})
+
+
 class _Company:
     """What stands near a spot: its chord, the pushes it has part in, and the spots near in time."""
 

@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from layout.arrange.loads import overloads
-from layout.arrange.nudging import nudged
+from layout.arrange.nudging import nudged, nudged_later
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import narrowed
 from layout.arrange.taking_turns import taking_turns
@@ -34,13 +34,17 @@ class Played:
     too_heavy: tuple[tuple[int, ...], ...]
 
 
-def played(problem: Problem, spots: Sequence[int]) -> Played:
+def played(problem: Problem, spots: Sequence[int], *, in_haste: bool = False) -> Played:
     """The plucks of a choice with their moments, spread chords no wider than they must be.
 
     Args:
         problem: The rules.
         spots: A choice that keeps every rule, by pluck; none give nothing played.
+        in_haste: Time is over: the choice is played as it is, each pluck as soon as may be from its moment on.
     """
+    if in_haste:
+        at_ns = nudged_later(problem, spots)
+        return Played(spots=tuple(spots), at_ns=at_ns, too_heavy=tuple(_too_heavy(problem, spots, at_ns)))
     narrow = narrowed(problem, spots)
     found = _nudged_apart(problem, narrow)
     if found.too_heavy and narrow != tuple(spots):

@@ -20,6 +20,7 @@ A spot loses its `ringing_cost` where one of an earlier pluck on its track is as
 of layout.arrange.weights: sums of whole numbers are exact, so the answer is the same everywhere.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -29,6 +30,7 @@ from layout.mechanics.arrays import BoolArray, IntArray
 
 NS_PER_S = 1_000_000_000
 NS_PER_MS = 1_000_000
+_MOST_IN_64_BITS = 2**63 - 1
 
 NO_PLUCK = -1  # stands in an array of plucks where there is none
 NO_SPOT = -1  # stands in an array of spots where there is none
@@ -66,10 +68,46 @@ class Drive:
 
     def load(self, track: int, before_ns: int) -> int:
         """The load of a pluck on a track this long before its release, rounded up; 0 outside the window."""
-        return sum(
-            -(-lift.load * (lift.window_ns - before_ns) // lift.window_ns)
-            for lift in self.lifts[track]
-            if 0 <= before_ns < lift.window_ns
+        return int(self.loads(np.array([track]), np.array([before_ns]))[0])
+
+    def loads(self, track: IntArray, before_ns: IntArray) -> IntArray:
+        """The same for many plucks: shape (n,) each."""
+        loads, windows_ns, before = self.load_table[track], self.window_table[track], before_ns[:, None]
+        left_ns = np.where((before >= 0) & (before < windows_ns), windows_ns - before, 0)
+        if self._is_vast:
+            loads, windows_ns, left_ns = loads.astype(object), windows_ns.astype(object), left_ns.astype(object)
+        found = (-(-loads * left_ns // windows_ns)).astype(np.int64)
+        return np.asarray(found.sum(axis=1))
+
+    def loads_of(self, track: int, before_ns: IntArray) -> IntArray:
+        """The same for plucks of one track, a good deal sooner: shape (n,)."""
+        found = np.zeros(len(before_ns), dtype=np.int64)
+        for lift in self.lifts[track]:
+            left_ns = np.where((before_ns >= 0) & (before_ns < lift.window_ns), lift.window_ns - before_ns, 0)
+            if self._is_vast:
+                left_ns = left_ns.astype(object)
+            found += (-(-lift.load * left_ns // lift.window_ns)).astype(np.int64)
+        return found
+
+    @cached_property
+    def load_table(self) -> IntArray:
+        """Shape (tracks, most lifts of one). `load` of every lift, by track; 0 where a track has no more."""
+        return self._table([[lift.load for lift in lifts] for lifts in self.lifts], 0)
+
+    @cached_property
+    def window_table(self) -> IntArray:
+        """Shape (tracks, most lifts of one). `window_ns` of every lift, by track; 1 where a track has no more."""
+        return self._table([[lift.window_ns for lift in lifts] for lifts in self.lifts], 1)
+
+    @cached_property
+    def _is_vast(self) -> bool:
+        """Whether a load times a window is more than 64 bits hold."""
+        return any(lift.load * lift.window_ns > _MOST_IN_64_BITS for lifts in self.lifts for lift in lifts)
+
+    def _table(self, rows: Sequence[Sequence[int]], missing: int) -> IntArray:
+        width = max(map(len, rows), default=0)
+        return np.array([[*row, *[missing] * (width - len(row))] for row in rows], dtype=np.int64).reshape(
+            len(rows), width
         )
 
 

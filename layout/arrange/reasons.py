@@ -9,9 +9,9 @@ import numpy as np
 
 from layout.arrange.arrangement import LeftOutReason
 from layout.arrange.comb import Comb
-from layout.arrange.loads import overloads, piled_up
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import Problem
+from layout.arrange.put_down import LoadsStanding
 from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import FULL_TURN_RAD
 
@@ -41,13 +41,31 @@ class Conflict:
 class Standing:
     """Chosen spots, by track, to be asked what forbids one more."""
 
-    def __init__(self, problem: Problem, spots: Sequence[int], spacing: Spacing) -> None:
+    def __init__(self, problem: Problem, spots: Sequence[int], spacing: Spacing, others: Sequence[int]) -> None:
+        """Stand the chosen spots up.
+
+        Args:
+            problem: The rules.
+            spots: Those chosen.
+            spacing: Which rule asks for how much.
+            others: All that will be asked about.
+        """
         self._problem = problem
         self._spacing = spacing
         self._spots = np.array(sorted(spots), dtype=np.int64)
         self._on_track: dict[int, list[tuple[int, int]]] = defaultdict(list)
         for spot in sorted(spots, key=lambda one: (int(problem.asked_ns[one]), int(problem.pluck[one]))):
             self._on_track[int(problem.track[spot])].append((int(problem.asked_ns[spot]), spot))
+        self._loads: LoadsStanding | None = None
+        if problem.drive is not None:
+            self._loads = LoadsStanding(problem, problem.drive, np.array([*spots, *others], dtype=np.int64))
+            for spot in spots:
+                self._loads.put(spot)
+        self._chosen = set(spots)
+        self._piled: dict[int, list[tuple[int, ...]]] = defaultdict(list)
+        for pile in problem.piled:
+            for spot in pile:
+                self._piled[spot].append(pile)
 
     def conflict(self, spot: int) -> Conflict:
         """What is nearest in the way of a spot whose pluck is not on the disc."""
@@ -74,11 +92,8 @@ class Standing:
                 )
 
     def _too_heavy(self, spot: int) -> Conflict | None:
-        drive, track = self._problem.drive, int(self._problem.track[spot])
-        if drive is None:
-            return None
-        lifted = np.array([*self._near(spot, 2 * drive.widest_ns), spot])
-        if not overloads(self._problem, lifted) and not piled_up(self._problem, np.append(self._spots, spot)):
+        track = int(self._problem.track[spot])
+        if self._loads is None or (self._loads.fits(spot) and not self._piles_up(spot)):
             return None
         return Conflict(
             track_index=track,
@@ -86,6 +101,14 @@ class Standing:
             other_track_index=track,
             apart_ns=0,
             reason="drive-torque",
+        )
+
+    def _piles_up(self, spot: int) -> bool:
+        """Whether with the spot every pluck of a pile would have its spot in it."""
+        of = self._problem.pluck
+        return any(
+            {int(of[one]) for one in pile if one == spot or one in self._chosen} == {int(of[one]) for one in pile}
+            for pile in self._piled.get(spot, ())
         )
 
     def _alone(self, spot: int) -> Conflict:
@@ -143,8 +166,9 @@ def reasons_of(
         comb: For pitches that have no usable tooth.
         spacing: Which rule asks for how much.
     """
-    standing = Standing(problem, spots, spacing)
     played = {int(problem.pluck[spot]) for spot in spots}
+    others = np.flatnonzero((problem.spread == 0) & ~np.isin(problem.pluck, list(played)))
+    standing = Standing(problem, spots, spacing, others.tolist())
     reasons: dict[int, LeftOutReason] = {}
     for pluck, key in enumerate(keys):
         if pluck in played:

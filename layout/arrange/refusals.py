@@ -86,7 +86,7 @@ def _why(posed: Posed, plucks: Sequence[int], spacing: Spacing) -> str:
     """The nearest conflict between spots of the plucks, in words."""
     spots = [spot for pluck in plucks for spot in range(int(posed.first_spot[pluck]), int(posed.first_spot[pluck + 1]))]
     conflicts = [
-        Standing(posed, [other], spacing).conflict(spot)
+        Standing(posed, [other], spacing, [spot]).conflict(spot)
         for spot in spots
         for other in spots
         if posed.pluck[other] < posed.pluck[spot]

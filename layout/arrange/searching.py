@@ -11,7 +11,7 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 from layout.arrange.arrangement import Stopped, Tried
-from layout.arrange.budget import Budget
+from layout.arrange.budget import LOOKS_TO_POSE, Budget
 from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solved, Solving
 
@@ -106,6 +106,7 @@ class _Candidate:
         """One step on."""
         if self._solvings is None:
             self._solvings = [Solving(problem) for problem in self._pose(self.way)]
+            budget.spend_looks(LOOKS_TO_POSE * sum(solving.problem.spot_count for solving in self._solvings))
         for disc, solving in enumerate(self._solvings):
             if not solving.taken_apart:
                 solving.some_parts(budget)

@@ -16,19 +16,20 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from layout.arrange.broken import broken_by
-from layout.arrange.budget import Budget
+from layout.arrange.budget import LOOKS_TO_JUDGE, LOOKS_TO_NARROW, LOOKS_TO_PLAY, LOOKS_TO_WRITE, Budget
 from layout.arrange.by_time import Best, Stuck, best_by_time, narrow_by_time
-from layout.arrange.coupled import best_coupled, worth_of
+from layout.arrange.coupled import MOST_LIFTED, best_coupled, worth_of
 from layout.arrange.fitting import fitted
-from layout.arrange.loads import piled_up
+from layout.arrange.loads import lifted_count, piled_up
 from layout.arrange.parts import parts_of
-from layout.arrange.playing import played
+from layout.arrange.playing import Played, played
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
 from layout.mechanics.arrays import IntArray
 
 MOST_TOGETHER = 1_500  # plucks in one integer program; real music puts some hundreds together at most
+MOST_AT_LEISURE = 2_000  # plucks that are nudged with all care although the time is over: some tenths of a second
 PLUCKS_AT_A_TIME = 200  # in parts solved at one step; between steps other problems may look more promising
 
 
@@ -40,11 +41,13 @@ class Solved:
         spots: The spots chosen, by pluck.
         worth: What they are worth.
         bound: No choice is worth more; equal to `worth` where the choice is proved the best.
+        played: The same plucks with their moments.
     """
 
     spots: tuple[int, ...]
     worth: int
     bound: int
+    played: Played
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -85,6 +88,7 @@ class Solving:
         self._silent = np.flatnonzero(problem.must_sound & (np.diff(problem.first_spot) == 0))
         self._groups: list[_Group] = []
         self._alone: dict[int, int] = {}
+        self._last_played: tuple[tuple[int, ...], tuple[tuple[int, ...], ...], Played] | None = None
 
     @property
     def taken_apart(self) -> bool:
@@ -124,31 +128,50 @@ class Solving:
             self.some_parts(budget)
         if self.impossible is not None:
             return self.impossible
-        while broken := self._broken():
+        return self._joined_up(budget)
+
+    def _joined_up(self, budget: Budget) -> Solved | Impossible:
+        """Parts that a choice breaks together, solved together, until nothing is broken."""
+        if lifted_count(self.problem, np.array(self._chosen(), dtype=np.int64)) > MOST_LIFTED:
+            return self._as_it_stands(self._chosen(), budget)
+        while broken := self._broken(budget):
             if not self._widened and self.problem.drive is not None and budget.stopped != "time":
-                self._widen()
-                continue
+                self._widened = True
+                if self._widen(budget):
+                    continue
+                return self._as_it_stands(self._chosen(), budget)
             if budget.spent:
-                return self._as_it_stands(self._chosen())
+                return self._as_it_stands(self._chosen(), budget)
             chosen = self._chosen()
             joined = self._joined(broken)
             if not all(self._fits_a_program(plucks) for plucks in joined):
-                return self._as_it_stands(chosen)
+                return self._as_it_stands(chosen, budget)
             for plucks in joined:
                 group = self._as_one(plucks, budget)
                 if group is None:
                     return Impossible(plucks=plucks)
                 self._groups.append(group)
             self._lower_bound()
-        spots = self._chosen()
+        return self._solved(self._chosen(), budget)
+
+    def _solved(self, spots: tuple[int, ...], budget: Budget) -> Solved:
         worth = worth_of(self.problem, spots)
-        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
+        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth), played=self._play(spots, budget))
 
-    def _broken(self) -> list[tuple[int, ...]]:
+    def _broken(self, budget: Budget) -> list[tuple[int, ...]]:
         chosen = self._chosen()
-        return broken_by(self.problem, chosen) or self._piled(chosen)
+        budget.spend_looks(LOOKS_TO_JUDGE * len(chosen))
+        return broken_by(self.problem, chosen) or self._piled(chosen, budget)
 
-    def _piled(self, chosen: Sequence[int]) -> list[tuple[int, ...]]:
+    def _play(self, spots: tuple[int, ...], budget: Budget) -> Played:
+        """A choice with its moments; kept, since what nothing is wrong with is asked for once more."""
+        if self._last_played is None or self._last_played[:2] != (spots, self.problem.piled):
+            budget.spend_looks(LOOKS_TO_PLAY * len(spots))
+            in_haste = len(spots) > MOST_AT_LEISURE and budget.stopped == "time"
+            self._last_played = spots, self.problem.piled, played(self.problem, spots, in_haste=in_haste)
+        return self._last_played[2]
+
+    def _piled(self, chosen: tuple[int, ...], budget: Budget) -> list[tuple[int, ...]]:
         """The spots of a choice that its nudges bring too near for the drive; forbidden together from now on.
 
         Those that must all sound are left: a ruling is not refused for moments that might have done.
@@ -157,23 +180,30 @@ class Solving:
         if problem.drive is None:
             return []
         piles = []
-        for heavy in played(problem, chosen).too_heavy:
+        for heavy in self._play(chosen, budget).too_heavy:
             if not problem.must_sound[problem.pluck[list(heavy)]].all():
                 piles.append(tuple(sorted({equal for spot in heavy for equal in problem.equals(spot)})))
         self.problem = replace(problem, piled=(*problem.piled, *piles))
         return piled_up(self.problem, np.array(chosen, dtype=np.int64))
 
-    def _widen(self) -> None:
-        """Let chords too heavy for the drive be spread; what is chosen so far stays as it is."""
-        self._widened = True
+    def _widen(self, budget: Budget) -> bool:
+        """Let chords too heavy for the drive be spread; what is chosen so far stays as it is.
+
+        False where it would take too long: what is found without is not proved then.
+        """
+        lifted = lifted_count(self.problem, np.arange(self.problem.spot_count))
+        budget.spend_looks(LOOKS_TO_WRITE * lifted)
+        if lifted > MOST_LIFTED:
+            return False
         problem = with_spread_chords(self.problem)
         if problem is self.problem:
-            return
+            return True
         now = np.flatnonzero(problem.spread == 0)
         for group in self._groups:
             group.spots = tuple(now[list(group.spots)].tolist())
         self._alone = {pluck: int(now[spot]) for pluck, spot in self._alone.items()}
         self.problem = replace(problem, piled=tuple(tuple(now[list(pile)].tolist()) for pile in problem.piled))
+        return True
 
     def _lower_bound(self) -> None:
         if self.problem.piled:
@@ -201,11 +231,12 @@ class Solving:
             if group is None or group.is_best:
                 return group
         narrow = narrow_by_time(steps, plucks)
+        budget.spend_looks(LOOKS_TO_NARROW * len(plucks))
         bound = narrow.bound if group is None else min(narrow.bound, group.bound)
         choices = [group.spots] if group is not None else []
         choices += [narrow.best.spots] if narrow.best is not None else []
         if not choices:
-            by_hand = self._by_hand(plucks, ())
+            by_hand = self._by_hand(plucks, (), budget)
             if by_hand is None:
                 return None
             choices.append(by_hand)
@@ -218,7 +249,7 @@ class Solving:
             return None
         spots = found.spots
         if spots is None or found.worth < found.bound:
-            by_hand = self._by_hand(plucks, spots or ())
+            by_hand = self._by_hand(plucks, spots or (), budget)
             if by_hand is None:
                 return None
             if spots is None or worth_of(self.problem, by_hand) > found.worth:
@@ -257,16 +288,15 @@ class Solving:
         self._groups = [group for place, group in enumerate(groups) if place not in taken]
         return [np.sort(np.concatenate([groups[place].plucks for place in sorted(one)])) for one in sets]
 
-    def _as_it_stands(self, chosen: Sequence[int]) -> Solved | Impossible:
+    def _as_it_stands(self, chosen: Sequence[int], budget: Budget) -> Solved | Impossible:
         """A choice so far, less what breaks a rule."""
         plucks = np.flatnonzero(np.diff(self.problem.first_spot) > 0)
-        spots = self._by_hand(plucks, chosen)
+        spots = self._by_hand(plucks, chosen, budget)
         if spots is None:
             return Impossible(plucks=plucks)
-        while piled := self._piled(spots):
+        while piled := self._piled(spots, budget):
             spots = self._without_lightest(spots, piled)
-        worth = worth_of(self.problem, spots)
-        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth))
+        return self._solved(spots, budget)
 
     def _without_lightest(self, chosen: Sequence[int], piled: Sequence[Sequence[int]]) -> tuple[int, ...]:
         """A choice less the lightest pluck of each of these sets that may go, and what belongs to it."""
@@ -279,13 +309,13 @@ class Solving:
         left = [spot for spot in chosen if int(problem.pluck[spot]) not in gone]
         return tuple(spot for spot in left if int(problem.parent[problem.pluck[spot]]) not in gone)
 
-    def _by_hand(self, plucks: IntArray, preferred: Sequence[int]) -> tuple[int, ...] | None:
+    def _by_hand(self, plucks: IntArray, preferred: Sequence[int], budget: Budget) -> tuple[int, ...] | None:
         """A choice that keeps every rule, near to the one preferred; None where there is none at all.
 
         Rulings are followed or refused for what is true, so where putting spots down one after the
         other finds no room for those that must sound, they are looked for whatever that costs.
         """
-        spots = fitted(self.problem, plucks, preferred)
+        spots = fitted(self.problem, plucks, preferred, budget)
         forced = plucks[self.problem.must_sound[plucks]]
         if spots is not None or not len(forced):
             return spots

@@ -4,15 +4,20 @@ import math
 
 import numpy as np
 import shapely
-from shapely.geometry.base import BaseGeometry
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged
+from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged, told_worth, unsure_advice
+from layout.check.worth import edge_unsure_mm, feature_unsure_mm
 from layout.documents.movement import Feature
+from layout.mechanics.arrays import FloatArray
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
+
+# An edge of the blank: the finding of a thin web to it, its name, and the movement's number for its diameter.
+_RIM = Code.WEB_TO_RIM, "the rim", "/disc/outer_diameter_mm"
+_CENTRE_HOLE = Code.WEB_TO_CENTRE_HOLE, "the centre hole", "/disc/centre_hole_mm"
 
 
 def tracks_are_on_the_disc(disc: Disc) -> list[Finding]:
@@ -58,18 +63,18 @@ def webs_to_the_rim_hold(disc: Disc) -> list[Finding]:
         finding
         for index in disc.used_tracks
         if not _off_disc(disc, index)
-        for finding in _web_to(disc, index, Code.WEB_TO_RIM, "the rim", rim_mm - _radial_reach_mm(disc, index)[1])
+        for finding in _web_to(disc, index, _RIM, rim_mm - _radial_reach_mm(disc, index)[1])
     ]
 
 
 def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
     """An error for a track whose openings leave less than the least web to the centre hole; as for the rim."""
-    hole_mm, code = disc.movement.disc.centre_hole_mm / 2, Code.WEB_TO_CENTRE_HOLE
+    hole_mm = disc.movement.disc.centre_hole_mm / 2
     return [
         finding
         for index in disc.used_tracks
         if not _off_disc(disc, index)
-        for finding in _web_to(disc, index, code, "the centre hole", _radial_reach_mm(disc, index)[0] - hole_mm)
+        for finding in _web_to(disc, index, _CENTRE_HOLE, _radial_reach_mm(disc, index)[0] - hole_mm)
     ]
 
 
@@ -79,7 +84,8 @@ def keep_outs_are_clear(disc: Disc) -> list[Finding]:
     for index in disc.used_tracks:
         nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
         for place, ring in enumerate(disc.movement.keep_out):
-            clear_mm = max(nearest_mm - ring.to_radius_mm, ring.from_radius_mm - farthest_mm)
+            outside_mm, inside_mm = nearest_mm - ring.to_radius_mm, ring.from_radius_mm - farthest_mm
+            clear_mm, end = max((outside_mm, "to_radius_mm"), (inside_mm, "from_radius_mm"))
             condition = Condition(
                 code=Code.IN_KEEP_OUT,
                 says=(
@@ -92,7 +98,8 @@ def keep_outs_are_clear(disc: Disc) -> list[Finding]:
                 limit=0.0,
                 unit="mm",
                 margin=clear_mm + GRAIN_MM,
-                rests_on=(f"/keep_out/{place}/from_radius_mm", f"/keep_out/{place}/to_radius_mm"),
+                rests_on=(f"/keep_out/{place}/{end}",),
+                also_unsure=edge_unsure_mm(disc, index),
                 at=Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index])),
                 remedy="Correct the ring or the track's radius_mm, or leave the notes of this track out.",
             )
@@ -110,8 +117,8 @@ def _radial_reach_mm(disc: Disc, index: int) -> tuple[float, float]:
     return nearest_mm - disc.pattern.core_round_mm, farthest_mm + disc.pattern.core_round_mm
 
 
-def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> list[Finding]:
-    limit_mm = disc.cutter.min_web_mm
+def _web_to(disc: Disc, index: int, edge: tuple[Code, str, str], web_mm: float) -> list[Finding]:
+    limit_mm, (code, what, diameter) = disc.cutter.min_web_mm, edge
     condition = Condition(
         code=code,
         says=(
@@ -122,7 +129,8 @@ def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> lis
         limit=limit_mm,
         unit="mm",
         margin=web_mm - limit_mm + GRAIN_MM,
-        rests_on=(f"/tracks/{index}/radius_mm", "/disc/outer_diameter_mm", "/disc/centre_hole_mm"),
+        rests_on=(),
+        also_unsure=edge_unsure_mm(disc, index) + disc.movement.plus_minus(diameter) / 2,
         at=Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index])),
         remedy="Leave the notes of this track out, or correct the track's radius_mm or the blank's sizes.",
     )
@@ -130,40 +138,60 @@ def _web_to(disc: Disc, index: int, code: Code, what: str, web_mm: float) -> lis
 
 
 def webs_to_features_hold(disc: Disc) -> list[Finding]:
-    """An error for every opening that leaves less than the least web to a hole, slot or notch of the blank."""
+    """An error for every opening that leaves less than the least web to a hole, slot or notch of the blank.
+
+    Where the openings of a row's features all keep it, but the nearest by less than its numbers are worth, one advice.
+    """
     points_mm = disc.placed_mm(disc.pattern.core_points_mm)
     cores = core_geometries(points_mm)
+    track_unsure_mm = np.array([edge_unsure_mm(disc, index) for index in range(len(disc.movement.tracks))])
     findings: list[Finding] = []
-    for feature in disc.movement.disc.features:
-        for angle_deg in feature.angles_deg:
+    for row, feature in enumerate(disc.movement.disc.features):
+        webs_mm = np.full((len(feature.angles_deg), disc.projection_count), np.inf)
+        for place, angle_deg in enumerate(feature.angles_deg):
             core, round_mm = feature_core_mm(feature, math.radians(angle_deg))
-            findings += _webs_to_feature(disc, cores, feature, (core, round_mm + disc.pattern.core_round_mm))
+            webs_mm[place] = shapely.distance(cores, core) - round_mm - disc.pattern.core_round_mm
+        unsure_mm = track_unsure_mm[disc.track_index] + feature_unsure_mm(disc, row)
+        findings += _webs_to_feature(disc, feature, webs_mm, unsure_mm)
     return findings[:MOST_FINDINGS]
 
 
-def _webs_to_feature(
-    disc: Disc, cores: np.ndarray, feature: Feature, grown: tuple[BaseGeometry, float]
-) -> list[Finding]:
+def _webs_to_feature(disc: Disc, feature: Feature, webs_mm: FloatArray, unsure_mm: FloatArray) -> list[Finding]:
+    """Of webs of shape (features of the row, n), and how far each projection's may be off, shape (n,)."""
+    over_mm = webs_mm - disc.cutter.min_web_mm
+    thin = np.argwhere(over_mm < -GRAIN_MM)
+    if len(thin):
+        return [
+            _web_to_feature(disc, feature, int(index), float(webs_mm[place, index]), float(unsure_mm[index]))
+            for place, index in thin
+        ]
+    sure_mm = over_mm - unsure_mm
+    index = int(np.argmin(sure_mm.min(axis=0, initial=np.inf))) if sure_mm.size else 0
+    if not sure_mm.size or sure_mm[:, index].min() >= 0:
+        return []
+    nearest = _web_to_feature(disc, feature, index, float(webs_mm[:, index].min()), float(unsure_mm[index]))
+    return [unsure_advice(nearest)]
+
+
+def _web_to_feature(disc: Disc, feature: Feature, index: int, web_mm: float, unsure_mm: float) -> Finding:
     limit_mm = disc.cutter.min_web_mm
-    webs_mm = shapely.distance(cores, grown[0]) - grown[1]
-    return [
-        Finding(
-            code=Code.WEB_TO_FEATURE,
-            level=Level.ERROR,
-            message=(
-                f"An opening on track {int(disc.track_index[index]) + 1} leaves {webs_mm[index]:.3f} mm to a "
-                f"{feature.purpose} {feature.shape}; {disc.cutter.id} needs {limit_mm:.3f} mm."
-            ),
-            measured=float(webs_mm[index]),
-            limit=limit_mm,
-            unit="mm",
-            at=Place(
-                tracks=(int(disc.track_index[index]) + 1,),
-                projections=(int(index),),
-                radius_mm=float(disc.radius_mm[index]),
-                angle_deg=math.degrees(disc.edge_angle_rad[index]),
-            ),
-            remedy="Leave the note out or put it on another track, or correct the feature in the movement document.",
-        )
-        for index in np.flatnonzero(webs_mm < limit_mm - GRAIN_MM)
-    ]
+    fails = web_mm < limit_mm - GRAIN_MM
+    return Finding(
+        code=Code.WEB_TO_FEATURE,
+        level=Level.ERROR,
+        message=(
+            f"An opening on track {int(disc.track_index[index]) + 1} leaves {web_mm:.3f} mm to a "
+            f"{feature.purpose} {feature.shape}; {disc.cutter.id} needs {limit_mm:.3f} mm."
+            + told_worth(web_mm - limit_mm, unsure_mm, "mm", fails=fails)
+        ),
+        measured=web_mm,
+        limit=limit_mm,
+        unit="mm",
+        at=Place(
+            tracks=(int(disc.track_index[index]) + 1,),
+            projections=(index,),
+            radius_mm=float(disc.radius_mm[index]),
+            angle_deg=math.degrees(disc.edge_angle_rad[index]),
+        ),
+        remedy="Leave the note out or put it on another track, or correct the feature in the movement document.",
+    )

@@ -6,16 +6,18 @@ the first notes good, is true of every disc: the report says it, and no finding.
 """
 
 import math
+from collections.abc import Callable
 from dataclasses import replace
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, Condition, judged
+from layout.check.margin import GRAIN_MM, Condition, judged, told_worth
 from layout.documents.drive import Drive, Winding
 from layout.documents.movement import Movement
 from layout.mechanics.starting import AT_SPEED_RATIO, Starting, starting_of
 from layout.mechanics.torque import TurnTorque, torque_over_turn
 from layout.mechanics.winding import (
     DiscLoad,
+    WindingRun,
     WoundDrive,
     braked_revolution_s,
     gear_ratio,
@@ -154,6 +156,7 @@ def winding_lasts(disc: Disc) -> list[Finding]:
             f", as the spring brings {run.full_nmm:.1f} N mm to it when full, and friction and "
             f"its heaviest chord take {run.needed_nmm:.1f} N mm"
         )
+    unsure_count = _winding_unsure(movement, drive, load, lambda each: each.turn_count)
     condition = Condition(
         code=Code.WINDING_TOO_SHORT,
         says=says,
@@ -163,7 +166,7 @@ def winding_lasts(disc: Disc) -> list[Finding]:
         unit="turns",
         margin=run.turn_count - LEAST_TURNS,
         rests_on=(),
-        also_unsure=_turns_unsure(movement, drive, load),
+        also_unsure=unsure_count,
         at=Place(),
         remedy=f"Thin out the heaviest chord, or give the movement a stronger spring or more turns. {_LET_DOWN}",
     )
@@ -174,7 +177,8 @@ def winding_lasts(disc: Disc) -> list[Finding]:
         Finding(
             code=Code.WINDING_TOO_SHORT,
             level=Level.ADVICE,
-            message=f"{says}: not enough for a turn that clears the star wheels and one that is heard.",
+            message=f"{says}: not enough for a turn that clears the star wheels and one that is heard."
+            + told_worth(run.turn_count - ADVISED_TURNS, unsure_count, "turns", fails=True),
             measured=run.turn_count,
             limit=ADVISED_TURNS,
             unit="turns",
@@ -200,6 +204,7 @@ def tempo_holds(disc: Disc) -> list[Finding]:
     slows_percent = _PERCENT * run.last_turn_slows_ratio
     if slows_percent <= MOST_SLOWING_PERCENT or not run.turn_count:
         return []
+    unsure_percent = _PERCENT * _winding_unsure(disc.movement, drive, load, lambda run: run.last_turn_slows_ratio)
     steady = steady_turns(drive, load, MOST_SLOWING_PERCENT / _PERCENT)
     return [
         Finding(
@@ -208,6 +213,7 @@ def tempo_holds(disc: Disc) -> list[Finding]:
             message=(
                 f"In the last turn of a winding the disc slows by {'at least ' * bool(_at_most(disc))}"
                 f"{slows_percent:.2f} %; {MOST_SLOWING_PERCENT:g} % is just heard."
+                + told_worth(MOST_SLOWING_PERCENT - slows_percent, unsure_percent, "%", fails=True)
             ),
             measured=slows_percent,
             limit=MOST_SLOWING_PERCENT,
@@ -276,8 +282,10 @@ def _at_most(disc: Disc) -> str:
     return "" if known and _torque(disc) is not None else "at most "
 
 
-def _turns_unsure(movement: Movement, drive: WoundDrive, load: DiscLoad) -> float:
-    """By how many turns the winding's numbers may shift them, each made worse by its stated worth, then summed."""
+def _winding_unsure(
+    movement: Movement, drive: WoundDrive, load: DiscLoad, told: Callable[[WindingRun], float]
+) -> float:
+    """By how much the winding's numbers may shift what a run tells: each made worse by its worth, then summed."""
     winding = movement.drive.winding if movement.drive is not None else None
     if winding is None:
         return 0.0
@@ -293,8 +301,8 @@ def _turns_unsure(movement: Movement, drive: WoundDrive, load: DiscLoad) -> floa
     # Shrunk by division: a number that may be off by all of itself must not become none at all.
     worse = [replace(drive, **{name: getattr(drive, name) / (1 + share)}) for name, share in shrunk.items() if share]
     worse.append(replace(drive, friction_nmm=drive.friction_nmm + movement.plus_minus(f"{_WINDING}/friction_nmm")))
-    count = run_down(drive, load, movement.revolution_s).turn_count
-    return math.fsum(abs(run_down(each, load, movement.revolution_s).turn_count - count) for each in worse)
+    as_stated = told(run_down(drive, load, movement.revolution_s))
+    return math.fsum(abs(told(run_down(each, load, movement.revolution_s)) - as_stated) for each in worse)
 
 
 def _rate_share(movement: Movement, winding: Winding) -> float:

@@ -51,10 +51,12 @@ class Code(StrEnum):
     KERF_CLOSES = "kerf-closes"
     LEAD_HAS_NO_ROOM = "lead-has-no-room"
     BRIDGE_HAS_NO_ROOM = "bridge-has-no-room"
+    BRIDGE_ON_FIT = "bridge-on-fit"
     HIT_OVER_OPENING = "hit-over-opening"
     FOOT_ON_FORMED = "foot-on-formed"
     PRESS_TOO_WEAK = "press-too-weak"
     LABEL_HIDDEN = "label-hidden"
+    LABEL_MISSING = "label-missing"
     # timing and drive
     TIMING_TOO_COARSE = "timing-too-coarse"
     START_TOO_SHORT = "start-too-short"

@@ -5,7 +5,7 @@ import math
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, GRAIN_RAD
+from layout.check.margin import GRAIN_MM, GRAIN_RAD, told_worth
 from layout.mechanics.arrays import BoolArray, FloatArray
 from layout.place.disc import Disc
 
@@ -43,13 +43,13 @@ def bends_are_wide_enough(disc: Disc) -> list[Finding]:
 def bends_lie_across_the_rolling(disc: Disc) -> list[Finding]:
     """One advice where tabs are bent nearly along the direction the sheet was rolled in: they crack more easily.
 
-    A tab's bend lies along the radius at its working edge. Not checked where the movement does not state
-    `disc.rolled_along_deg`.
+    A tab's bend lies along the radius where its frame is square to it: at the working edge of a fold, and at the
+    strike point of a lance. Not checked where the movement does not state `disc.rolled_along_deg`.
     """
     rolled_deg = disc.movement.disc.rolled_along_deg
     if disc.pattern.making == "slot" or rolled_deg is None or not disc.projection_count:
         return []
-    to_rolling_deg = _between_lines_deg(np.degrees(disc.edge_angle_rad), rolled_deg)
+    to_rolling_deg = _between_lines_deg(_bends_deg(disc), rolled_deg)
     along = _is_along(to_rolling_deg)
     if not along.any():
         return []
@@ -63,6 +63,12 @@ def bends_lie_across_the_rolling(disc: Disc) -> list[Finding]:
                 f"{int(along.sum())} of {disc.projection_count} {bend} lie less than {LEAST_TO_ROLLING_DEG:g} degrees "
                 f"from the direction the sheet is rolled in: those {_sectors(rolled_deg)} on the disc; the nearest "
                 f"lies {to_rolling_deg[nearest]:.1f} degrees from it. Bent along the rolling, metal cracks more easily."
+                + told_worth(
+                    float(to_rolling_deg[nearest]) - LEAST_TO_ROLLING_DEG,
+                    disc.movement.plus_minus("/disc/rolled_along_deg"),
+                    "deg",
+                    fails=True,
+                )
             ),
             measured=float(to_rolling_deg[nearest]),
             limit=LEAST_TO_ROLLING_DEG,
@@ -76,6 +82,12 @@ def bends_lie_across_the_rolling(disc: Disc) -> list[Finding]:
             remedy=_remedy(disc, int(along.sum())),
         )
     ]
+
+
+def _bends_deg(disc: Disc) -> FloatArray:
+    """Shape (n,). The direction of each bend: α − s·asin(w/r) where the frame is square to the radius at u = w."""
+    behind_rad = disc.turning.direction * np.arcsin(np.clip(disc.pattern.strike_u_mm / disc.radius_mm, -1, 1))
+    return np.asarray(np.degrees(disc.edge_angle_rad - behind_rad))
 
 
 def _between_lines_deg(angle_deg: FloatArray, line_deg: float) -> FloatArray:
@@ -95,8 +107,8 @@ def _sectors(rolled_deg: float) -> str:
 
 def _remedy(disc: Disc, along_count: int) -> str:
     """Where another way of laying the blank on the sheet leaves fewer such bends, the best one to a degree."""
-    edges_deg = np.degrees(disc.edge_angle_rad)
-    counts = [int(_is_along(_between_lines_deg(edges_deg, line_deg)).sum()) for line_deg in range(_HALF_TURN_DEG)]
+    bends_deg = _bends_deg(disc)
+    counts = [int(_is_along(_between_lines_deg(bends_deg, line_deg)).sum()) for line_deg in range(_HALF_TURN_DEG)]
     fewest_deg = int(np.argmin(counts))
     turn = (
         f"Lay the blank so that it is rolled along {fewest_deg} degrees ({counts[fewest_deg]} such bends); or try"

@@ -5,12 +5,14 @@ import math
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
+from layout.check.slugs import slugs_are_held
 from layout.documents.cutter import Cutter
 from layout.mechanics.arrays import FloatArray
 from layout.mechanics.bridging import MOST_SHARE, arcs_of_rim_rad, gap_mm, gaps_in
 from layout.mechanics.lead import clear_of_lines_mm, fits_in_circle, pierced_inside_mm
 from layout.mechanics.obround import obround_mm
 from layout.mechanics.offset import moved_outlines
+from layout.mechanics.slugs import HeldOpening, OutlineGap, begun_after, held_openings, where_on_feature
 from layout.place.disc import Disc
 
 
@@ -23,25 +25,38 @@ def leads_have_room(disc: Disc) -> list[Finding]:
     if cutter.lead_in is None:
         return []
     blank, cut = disc.movement.disc, disc.pattern.cut
+    held = {(each.where, each.size_mm): each for each in held_openings(disc.pattern, disc.movement, cutter)}
     without = []
-    if cut is not None and cut.closed and not _fits(cut.points_mm, cut.bulges, cutter):
-        without.append("cuts of the projections have")
-    if not _fits_round(blank.centre_hole_mm, cutter):
+    if cut is not None and cut.closed:
+        slot_mm = disc.movement.projection.length_mm or 0.0, disc.movement.projection.width_mm
+        slot = held.get(("slot", slot_mm)) if disc.pattern.making == "slot" else None
+        if not _fits(cut.points_mm, cut.bulges, cutter, slot):
+            without.append("cuts of the projections have")
+    if not _fits_round(blank.centre_hole_mm, cutter, held.get(("anywhere", (blank.centre_hole_mm,) * 2))):
         without.append("centre hole has")
     for one in blank.features:
         if one.shape == "notch":
             continue
+        size_mm = one.length_mm, one.width_mm
+        opening = held.get((where_on_feature(one), size_mm))
         if one.length_mm == one.width_mm:
-            fits = _fits_round(one.width_mm, cutter)
+            fits = _fits_round(one.width_mm, cutter, opening)
         else:
-            fits = _fits(*obround_mm(one.length_mm, one.width_mm), cutter)
+            fits = _fits(*obround_mm(*size_mm), cutter, opening)
         if not fits:
             without.append(f"{one.purpose} {one.shape} has")
     return [_no_room(cutter, what, cutter.lead_in.length_mm) for what in dict.fromkeys(without)]
 
 
 def bridges_have_room(disc: Disc) -> list[Finding]:
-    """A warning where the rim's arcs are too short for the cutter's bridges; the rim is then cut whole."""
+    """A warning where the rim's arcs are too short for the cutter's bridges: the rim is then cut whole.
+
+    What is found of the bridges of slugs: see slugs_are_held.
+    """
+    return [*_rim_has_room(disc), *slugs_are_held(disc)]
+
+
+def _rim_has_room(disc: Disc) -> list[Finding]:
     bridges, rim_mm = disc.cutter.bridges, disc.movement.disc.outer_diameter_mm / 2
     if bridges is None:
         return []
@@ -65,9 +80,11 @@ def bridges_have_room(disc: Disc) -> list[Finding]:
     ]
 
 
-def _fits(points_mm: FloatArray, bulges: FloatArray, cutter: Cutter) -> bool:
+def _fits(points_mm: FloatArray, bulges: FloatArray, cutter: Cutter, held: HeldOpening | None) -> bool:
     if cutter.lead_in is None:
         return True
+    if held is not None and held.gaps is not None:
+        return _fits_beside_gaps(held, held.gaps, cutter)
     if cutter.kerf_compensated:
         moved = moved_outlines(np.asarray(points_mm)[None], bulges, -cutter.kerf_mm / 2)
         points_mm, bulges = (points_mm, bulges) if moved is None else (moved[0][0], moved[1])
@@ -75,12 +92,23 @@ def _fits(points_mm: FloatArray, bulges: FloatArray, cutter: Cutter) -> bool:
     return pierced_inside_mm(points_mm, bulges, length_mm=cutter.lead_in.length_mm, clear_mm=clear_mm) is not None
 
 
-def _fits_round(diameter_mm: float, cutter: Cutter) -> bool:
+def _fits_round(diameter_mm: float, cutter: Cutter, held: HeldOpening | None) -> bool:
     if cutter.lead_in is None:
         return True
+    if held is not None and held.gaps is not None:
+        return _fits_beside_gaps(held, held.gaps, cutter)
     smaller_mm = cutter.kerf_mm if cutter.kerf_compensated and diameter_mm > cutter.kerf_mm else 0.0
     radius_mm, clear_mm = (diameter_mm - smaller_mm) / 2, clear_of_lines_mm(cutter)
     return fits_in_circle(radius_mm, length_mm=cutter.lead_in.length_mm, clear_mm=clear_mm)
+
+
+def _fits_beside_gaps(held: HeldOpening, gaps: tuple[OutlineGap, ...], cutter: Cutter) -> bool:
+    """Whether every line between two bridges of a slug has room for its lead."""
+    length_mm = 0.0 if cutter.lead_in is None else cutter.lead_in.length_mm
+    begun = [begun_after(gap, held.points_mm, held.bulge_ratio) for gap in gaps]
+    clear_mm = clear_of_lines_mm(cutter)
+    leads = [pierced_inside_mm(*each, length_mm=length_mm, clear_mm=clear_mm, forwards_only=True) for each in begun]
+    return all(lead is not None for lead in leads)
 
 
 def _no_room(cutter: Cutter, what: str, length_mm: float) -> Finding:

@@ -5,7 +5,7 @@ movement that may have been measured; where they may be off by more than the mar
 that is said.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.movement import Movement
@@ -48,20 +48,29 @@ class Condition:
     also_unsure: float = 0.0
 
 
+def told_worth(margin: float, unsure: float, unit: str, *, fails: bool) -> str:
+    """A sentence, after a space, where a margin is smaller than what the numbers it stands on are worth; else "".
+
+    Args:
+        margin: Above zero where a condition holds, in `unit`.
+        unsure: How far the numbers may shift it, either way.
+        unit: Of both.
+        fails: Whether the condition fails; a margin of zero may mean either.
+    """
+    if abs(margin) >= unsure:
+        return ""
+    how = "fails" if fails else "holds"
+    return f" It {how} by {abs(margin):.3f} {unit}, less than the ±{unsure:.3f} {unit} of the numbers it stands on."
+
+
 def judged(condition: Condition, movement: Movement) -> list[Finding]:
     """An error where the condition fails, a warning where it holds by less than its numbers are worth."""
     unsure = condition.also_unsure + sum(movement.plus_minus(pointer) for pointer in condition.rests_on)
     fails = condition.margin < 0 or (condition.margin == 0 and not condition.holds_at_limit)
     if not fails and condition.margin >= unsure:
         return []
-    worth = f"less than the ±{unsure:.3f} {condition.unit} of the numbers it stands on"
-    by = f"by {abs(condition.margin):.3f} {condition.unit}"
-    if fails:
-        says = f"{condition.says}: {condition.so}." + (
-            f" It fails {by}, {worth}." if -condition.margin < unsure else ""
-        )
-    else:
-        says = f"{condition.says}. It holds {by}, {worth}."
+    says = f"{condition.says}: {condition.so}." if fails else f"{condition.says}."
+    says += told_worth(condition.margin, unsure, condition.unit, fails=fails)
     return [
         Finding(
             code=condition.code if fails else Code.MARGIN_UNSURE,
@@ -74,3 +83,13 @@ def judged(condition: Condition, movement: Movement) -> list[Finding]:
             remedy=condition.remedy if fails else f"Measure again to be sure; if it then fails: {condition.remedy}",
         )
     ]
+
+
+def unsure_advice(finding: Finding) -> Finding:
+    """The advice to measure again, of a finding whose limit is kept by less than its numbers are worth."""
+    return replace(
+        finding,
+        code=Code.MARGIN_UNSURE,
+        level=Level.ADVICE,
+        remedy=f"Measure again to be sure; if it then fails: {finding.remedy}",
+    )

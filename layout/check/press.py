@@ -9,36 +9,53 @@ from shapely.geometry.base import BaseGeometry
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import MOST_FINDINGS, Condition, judged
+from layout.documents.cutter import Tool
+from layout.documents.reading import FULL_TURN_DEG
 from layout.mechanics.arrays import FloatArray, IntArray
-from layout.mechanics.blank import feature_core_mm
+from layout.mechanics.blank import feature_core_mm, features_once
 from layout.mechanics.hits import GRAIN_MM2, Hits
+from layout.mechanics.hole_hits import CENTRE_HOLE, HoleHits, hole_hits, hole_named
 from layout.mechanics.punching import cutting_force_n, press_force_n, sheared_length_mm
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
+NOT_STRUCK = -1  # the turn of a hole that the press does not strike: there before all others
 _QUARTER_STEPS = 64  # straight pieces to a quarter of a round end: off by 0.0002 of its radius at most
 
 
 def press_is_strong_enough(disc: Disc) -> list[Finding]:
-    """An error where a hit takes more force than the press has.
+    """An error for every tool whose hit takes more force than the press has.
 
     Not judged where the press's capacity_n or the sheet's shear_strength_n_per_mm2 is not stated, nor
     where no tool fits.
     """
-    hits, blank = disc.hits, disc.movement.disc
-    capacity_n, shear_n_per_mm2 = hits.press.capacity_n, blank.shear_strength_n_per_mm2
-    if disc.cutter.kind == "laser" or hits.tool is None or capacity_n is None or shear_n_per_mm2 is None:
+    if disc.cutter.kind == "laser":
         return []
-    length_mm = sheared_length_mm(hits.tool)
+    tools = [hits.tool for hits in _hole_hits(disc)]
+    if disc.hits.tool is not None:
+        tools.append(disc.hits.tool)
+    return [finding for tool in tools for finding in _strong_enough(disc, tool)]
+
+
+def _hole_hits(disc: Disc) -> tuple[HoleHits, ...]:
+    return hole_hits(disc.movement, disc.cutter, disc.turning.direction)
+
+
+def _strong_enough(disc: Disc, tool: Tool) -> list[Finding]:
+    press, blank = disc.hits.press, disc.movement.disc
+    capacity_n, shear_n_per_mm2 = press.capacity_n, blank.shear_strength_n_per_mm2
+    if capacity_n is None or shear_n_per_mm2 is None:
+        return []
+    length_mm = sheared_length_mm(tool)
     cutting_n = cutting_force_n(length_mm, blank.thickness_mm, shear_n_per_mm2)
-    force_n = press_force_n(cutting_n, hits.press.stripping_share)
+    force_n = press_force_n(cutting_n, press.stripping_share)
     worth = disc.movement.plus_minus
     unsure = worth("/disc/thickness_mm") / blank.thickness_mm
     unsure += worth("/disc/shear_strength_n_per_mm2") / shear_n_per_mm2
     condition = Condition(
         code=Code.PRESS_TOO_WEAK,
         says=(
-            f"A hit of {hits.tool.tool} shears {length_mm:.2f} mm of {blank.thickness_mm:g} mm {blank.material} at "
+            f"A hit of {tool.tool} shears {length_mm:.2f} mm of {blank.thickness_mm:g} mm {blank.material} at "
             f"{shear_n_per_mm2:g} N/mm² and takes {force_n:.0f} N with stripping; "
             f"{disc.cutter.id} has {capacity_n:.0f} N"
         ),
@@ -58,6 +75,9 @@ def press_is_strong_enough(disc: Disc) -> list[Finding]:
 def hits_fall_on_whole_metal(disc: Disc) -> list[Finding]:
     """An error for every hit that falls partly into an opening struck before it, or into a hole of the blank.
 
+    Hits of projections and of holes alike; of two holes that cut into each other, the one struck later is
+    told, where the press strikes either.
+
     The metal then pushes the punch to one side, and its edge runs into the die (common practice). A hit
     that falls wholly into an opening meets no metal and is no matter of this check.
     """
@@ -66,7 +86,8 @@ def hits_fall_on_whole_metal(disc: Disc) -> list[Finding]:
     hits = disc.hits
     cores = core_geometries(hits.placed_mm(disc.pattern.core_points_mm))
     footprints = np.array([_grown(core, disc.pattern.core_round_mm) for core in cores], dtype=np.object_)
-    return (_over_each_other(disc, hits, footprints) + _over_the_blank(disc, footprints))[:MOST_FINDINGS]
+    over = _over_each_other(disc, hits, footprints) + _over_the_blank(disc, footprints) + _holes_over_holes(disc)
+    return over[:MOST_FINDINGS]
 
 
 def _over_each_other(disc: Disc, hits: Hits, footprints: NDArray[np.object_]) -> list[Finding]:
@@ -84,12 +105,7 @@ def _over_each_other(disc: Disc, hits: Hits, footprints: NDArray[np.object_]) ->
 
 
 def _over_the_blank(disc: Disc, footprints: NDArray[np.object_]) -> list[Finding]:
-    blank = disc.movement.disc
-    named: list[tuple[str, BaseGeometry]] = [("the centre hole", _grown(shapely.Point(0, 0), blank.centre_hole_mm / 2))]
-    for feature in blank.features:
-        for angle_deg in feature.angles_deg:
-            core, round_mm = feature_core_mm(feature, math.radians(angle_deg))
-            named.append((f"the {feature.purpose} {feature.shape} at {angle_deg:.3f}°", _grown(core, round_mm)))
+    named = _blank_shapes(disc)
     tree = shapely.STRtree([shape for _, shape in named])
     hit, hole = tree.query(footprints, predicate="intersects")
     share = _shares(footprints[hit], np.array([shape for _, shape in named], dtype=np.object_)[hole])
@@ -97,6 +113,53 @@ def _over_the_blank(disc: Disc, footprints: NDArray[np.object_]) -> list[Finding
         _over(disc, int(hit[pair]), float(share[pair]), named[hole[pair]][0], ())
         for pair in _by_place(hit, hole, share)
     ]
+
+
+def _blank_shapes(disc: Disc) -> list[tuple[str, BaseGeometry]]:
+    """The blank's holes and notches by name, the centre hole first."""
+    blank = disc.movement.disc
+    named: list[tuple[str, BaseGeometry]] = [(CENTRE_HOLE, _grown(shapely.Point(0, 0), blank.centre_hole_mm / 2))]
+    for feature, angle_deg in features_once(blank):
+        core, round_mm = feature_core_mm(feature, math.radians(angle_deg))
+        named.append((hole_named(feature, angle_deg), _grown(core, round_mm)))
+    return named
+
+
+def _holes_over_holes(disc: Disc) -> list[Finding]:
+    """Holes struck partly into another; what this press does not strike is there before."""
+    struck = [name for hits in _hole_hits(disc) for name in hits.holes]
+    turn = {name: place for place, name in enumerate(struck)}
+    named = _blank_shapes(disc)
+    shapes = np.array([shape for _, shape in named], dtype=np.object_)
+    turns = np.array([turn.get(name, NOT_STRUCK) for name, _ in named])
+    earlier, later = shapely.STRtree(shapes).query(shapes, predicate="intersects")
+    after = turns[later] > turns[earlier]
+    earlier, later = earlier[after], later[after]
+    share = _shares(shapes[later], shapes[earlier])
+    return [
+        _hole_over(named[later[pair]], named[earlier[pair]][0], float(share[pair]))
+        for pair in _by_place(turns[later], turns[earlier], share)
+    ]
+
+
+def _hole_over(hole: tuple[str, BaseGeometry], what: str, share: float) -> Finding:
+    middle = hole[1].centroid
+    return Finding(
+        code=Code.HIT_OVER_OPENING,
+        level=Level.ERROR,
+        message=(
+            f"The hit of {hole[0]} falls with {100 * share:.1f} % of its footprint into {what}: "
+            "the metal pushes the punch aside and its edge runs into the die."
+        ),
+        measured=100 * share,
+        limit=0.0,
+        unit="%",
+        at=Place(
+            radius_mm=math.hypot(middle.x, middle.y),
+            angle_deg=math.degrees(math.atan2(middle.y, middle.x)) % FULL_TURN_DEG,
+        ),
+        remedy="Correct the holes in the movement document; or have one of the two cut apart.",
+    )
 
 
 def _grown(core: BaseGeometry, round_mm: float) -> BaseGeometry:

@@ -6,6 +6,8 @@ import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged
+from layout.check.worth import radius_pointer
+from layout.documents.movement import StarWheel
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.star_wheel import touch_zone_mm
 from layout.mechanics.turning import FULL_TURN_RAD
@@ -19,10 +21,9 @@ def star_wheels_keep_up(disc: Disc) -> list[Finding]:
     findings: list[Finding] = []
     for index in disc.used_tracks:
         reach_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
-        worth_mm = sum(disc.movement.plus_minus(pointer) for pointer in _arc_pointers(index))
-        sure_mm = float(disc.turning.engagement_arc_mm[index]) + worth_mm
+        arc_mm = float(disc.turning.engagement_arc_mm[index])
         for one, two, apart_rad in _neighbours(disc, index):
-            if apart_rad * reach_mm >= sure_mm:  # nearly all: not worth the words
+            if apart_rad * reach_mm >= arc_mm + _arc_unsure_mm(disc, index, apart_rad):  # nearly all: not worth words
                 continue
             findings += judged(_step_apart(disc, index, (one, two), apart_rad * reach_mm), disc.movement)
     return findings[:MOST_FINDINGS]
@@ -43,34 +44,63 @@ def _step_apart(disc: Disc, index: int, pair: tuple[int, int], travel_mm: float)
         limit=limit_mm,
         unit="mm",
         margin=travel_mm - limit_mm + GRAIN_MM,
-        rests_on=_arc_pointers(index),
+        rests_on=(),
+        also_unsure=_arc_unsure_mm(disc, index, travel_mm * FULL_TURN_RAD / around_mm),
         at=_at(disc, pair),
         remedy=APART,
     )
 
 
-def _arc_pointers(index: int) -> tuple[str, str]:
-    return f"/tracks/{index}/engagement_arc_mm", "/star_wheel/engagement_arc_mm"
+def _arc_unsure_mm(disc: Disc, index: int, apart_rad: float) -> float:
+    """How far the travel between two plucks may be off from the arc a step takes.
+
+    The arc by its own worth; where it is computed, 2R·sin(π/n), by 2·sin(π/n) times that of R. The travel by the
+    angle between the plucks times the worth of the track's radius.
+    """
+    movement, worth = disc.movement, disc.movement.plus_minus
+    wheel, travel_mm = movement.star_wheel, apart_rad * worth(radius_pointer(index))
+    if movement.tracks[index].engagement_arc_mm is not None:
+        return travel_mm + worth(f"/tracks/{index}/engagement_arc_mm")
+    if isinstance(wheel, StarWheel):
+        return travel_mm + 2 * math.sin(math.pi / wheel.points) * worth("/star_wheel/tip_radius_mm")
+    return travel_mm + worth("/star_wheel/engagement_arc_mm")
 
 
 def dampers_recover(disc: Disc) -> list[Finding]:
     """An error for two plucks of a damped tooth nearer than its recovery, at the movement's fastest turn."""
-    movement = disc.movement
+    movement, worth = disc.movement, disc.movement.plus_minus
     findings: list[Finding] = []
     for index in disc.used_tracks:
         if index + 1 not in movement.damped_tracks:
             continue
         for one, two, apart_rad in _neighbours(disc, index):
-            apart_s = apart_rad * movement.fastest_revolution_s / FULL_TURN_RAD
-            if apart_rad >= FULL_TURN_RAD * movement.damper_recovery_s / movement.fastest_revolution_s - GRAIN_RAD:
+            turn = apart_rad / FULL_TURN_RAD
+            apart_s = turn * movement.fastest_revolution_s
+            unsure_s = worth("/damper_recovery_s") + turn * worth("/fastest_revolution_s")
+            if apart_s >= movement.damper_recovery_s + unsure_s:  # nearly all: not worth the words
                 continue
-            message = (
-                f"Two plucks on track {index + 1} are {apart_s:.3f} s apart at the fastest turn; "
-                f"its damper needs {movement.damper_recovery_s:.3f} s."
-            )
-            numbers = (apart_s, movement.damper_recovery_s, "s")
-            findings.append(_repeat(disc, Code.DAMPER_NOT_RECOVERED, message, (one, two), numbers))
+            findings += judged(_damped_apart(disc, (one, two), apart_s, unsure_s), movement)
     return findings[:MOST_FINDINGS]
+
+
+def _damped_apart(disc: Disc, pair: tuple[int, int], apart_s: float, unsure_s: float) -> Condition:
+    movement, track = disc.movement, int(disc.track_index[pair[0]]) + 1
+    return Condition(
+        code=Code.DAMPER_NOT_RECOVERED,
+        says=(
+            f"Two plucks on track {track} are {apart_s:.3f} s apart at the fastest turn; its damper needs "
+            f"{movement.damper_recovery_s:.3f} s"
+        ),
+        so="the tooth is met while it still sounds, and buzzes",
+        measured=apart_s,
+        limit=movement.damper_recovery_s,
+        unit="s",
+        margin=apart_s - movement.damper_recovery_s + GRAIN_RAD * movement.fastest_revolution_s / FULL_TURN_RAD,
+        rests_on=(),
+        also_unsure=unsure_s,
+        at=_at(disc, pair),
+        remedy=APART,
+    )
 
 
 def plucks_lie_in_the_music(disc: Disc) -> list[Finding]:
@@ -158,18 +188,4 @@ def _at(disc: Disc, projections: tuple[int, ...]) -> Place:
         radius_mm=float(disc.radius_mm[first]),
         angle_deg=math.degrees(disc.edge_angle_rad[first]),
         sounds_s=float(sounds_s[0]),
-    )
-
-
-def _repeat(disc: Disc, code: Code, message: str, pair: tuple[int, int], numbers: tuple[float, float, str]) -> Finding:
-    measured, limit, unit = numbers
-    return Finding(
-        code=code,
-        level=Level.ERROR,
-        message=message,
-        measured=measured,
-        limit=limit,
-        unit=unit,
-        at=_at(disc, pair),
-        remedy=APART,
     )

@@ -6,6 +6,7 @@ import numpy as np
 
 from layout.arrange.arrangement import Arrangement
 from layout.check.finding import Code, Finding, Level, Place
+from layout.check.margin import told_worth
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
 from layout.mechanics.tolerances import place_error
 from layout.place.disc import Disc
@@ -51,6 +52,7 @@ def fast_passages_are_held(arrangement: Arrangement, disc: Disc) -> list[Finding
                 f"Track {track + 1}, at {radius_mm:.2f} mm, can be cut within {errors_ms[worst]:.1f} ms either way; "
                 f"at {arrangement.planned_s[pluck]:.3f} s it plays a note of the top line {gap_ms[worst]:.0f} ms from "
                 f"the next, where more than {ORDER_HEARD_MS:.0f} ms is heard{others}."
+                + told_worth(ORDER_HEARD_MS - errors_ms[worst], _unsure_ms(disc, track), "ms", fails=True)
             ),
             measured=float(errors_ms[worst]),
             limit=ORDER_HEARD_MS,
@@ -65,6 +67,14 @@ def fast_passages_are_held(arrangement: Arrangement, disc: Disc) -> list[Finding
             remedy="Use a cutter that holds its position closer, slow the tune down, or transpose it further out.",
         )
     ]
+
+
+def _unsure_ms(disc: Disc, track: int) -> float:
+    """How far a track's error in time may be off: e·T/(2πr) by shares of turn and radius, an angle's by the turn's."""
+    movement, error = disc.movement, place_error(disc.movement, disc.cutter, track)
+    turn_share = movement.plus_minus("/revolution_s") / movement.revolution_s
+    radius_share = movement.plus_minus(f"/tracks/{track}/radius_mm") / movement.tracks[track].radius_mm
+    return error.position_ms * (turn_share + radius_share) + error.angle_ms * turn_share
 
 
 def _fast(arrangement: Arrangement) -> tuple[IntArray, FloatArray]:

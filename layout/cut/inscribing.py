@@ -56,13 +56,26 @@ def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) ->
     Returns:
         One Lettering a line; none where nothing fits.
     """
+    return _lettered(rooms, lines, rim_mm)[0]
+
+
+def without_room(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> tuple[Inscription, ...]:
+    """The lines that `lettering` leaves out, because they fit nowhere; none where all stand."""
+    return _lettered(rooms, lines, rim_mm)[1]
+
+
+def _lettered(
+    rooms: Rooms, lines: tuple[Inscription, ...], rim_mm: float
+) -> tuple[tuple[Lettering, ...], tuple[Inscription, ...]]:
     written: list[Lettering] = []
+    missing: list[Inscription] = []
     left = list(lines)
     while left:
         placed = _placed(rooms, written, left, rim_mm)
         written += placed
+        missing += [] if placed else left[:1]
         left = left[max(len(placed), 1) :]
-    return tuple(written)
+    return tuple(written), tuple(missing)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

@@ -65,8 +65,8 @@ class _Strokes:
 def path_of(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
     """What the machine travels for a drawing.
 
-    A circle is begun at its +X side. Of a press only the marks and the hits count: its holes and rim are
-    the blank's, and how they are struck is not stated.
+    A circle is begun at its +X side. Of a press the marks and the strikes count: those on holes it
+    has a tool for, and on projections; the rim is not struck.
 
     Args:
         disc: The disc.
@@ -81,7 +81,7 @@ def path_of(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
             mark_length_mm=_length_mm(marked),
             rapid_length_mm=_rapid_mm(marked),
             pierce_count=0,
-            hit_count=len(order),
+            hit_count=struck.hit_count,
             turned_rad=struck.turned_rad,
             slid_mm=struck.slid_mm,
             tool_change_count=struck.tool_change_count,

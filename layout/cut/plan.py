@@ -99,6 +99,14 @@ class CutPath:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class ToolHits:
+    """Hits of one press tool on the blank's own holes, in the order struck. at_mm: shape (n, 2), as drawn."""
+
+    tool: str
+    at_mm: FloatArray
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class CutPlan:
     """The disc as it is cut, and the record of it.
 
@@ -113,9 +121,13 @@ class CutPlan:
         order: Shape (n,). Projection indices in cutting order.
         at_mm: Shape (n, 2). In that order, as drawn: the strike point (press) or the middle of the
             working edge (laser).
-        tool: The press tool of every hit; "" on a laser.
+        tool: The press tool of every projection's hit; "" on a laser, and where no tool makes them.
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
         path: What the machine travels; None where it is not worked out.
+        order_number: The shop's, as it is lettered; None for none.
+        hole_hits: What a press strikes of the blank's own holes, tool by tool, before all projections; none
+            on a laser. The drawing has them as outlines on HOLES, never as points on HITS.
+        not_struck: What of the blank a press does not strike, each with the reason; none on a laser.
     """
 
     title: str
@@ -129,3 +141,6 @@ class CutPlan:
     tool: str
     part: str = ""
     path: CutPath | None = None
+    order_number: str | None = None
+    hole_hits: tuple[ToolHits, ...] = ()
+    not_struck: tuple[str, ...] = ()

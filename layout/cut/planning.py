@@ -1,22 +1,22 @@
 """From a disc to its cut plan."""
 
-from dataclasses import dataclass, replace
-
-import shapely
+from dataclasses import replace
 
 from layout.cut.blank import holes, rim
 from layout.cut.bridges import with_bridges
 from layout.cut.inscribing import lettering
 from layout.cut.kerf import as_the_beam_runs
 from layout.cut.leads import with_leads
-from layout.cut.marks import index_mark
+from layout.cut.marking import Marking, marking_of
 from layout.cut.mirroring import mirrored, mirrored_points_mm
 from layout.cut.path import cutting_order, path_of
-from layout.cut.plan import CutPlan, Drawing, Entity, Outlines
+from layout.cut.plan import CutPlan, Drawing, Entity, ToolHits
 from layout.cut.projections import cut_projections, formed_projections, struck_at_mm
-from layout.cut.room import Rooms
+from layout.cut.slugs import loose_slug_count, with_held_slugs
+from layout.cut.striking import struck_holes
 from layout.cut.wording import Words, head_lines, inscriptions
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.hole_hits import not_struck
 from layout.place.disc import Disc
 
 
@@ -34,9 +34,9 @@ def plan_cuts(
     What is marked comes first, while the blank lies still; then inside before outside: projections,
     feature holes, centre hole; the rim last, since it sets the disc free. Projections follow one
     another so that the machine travels little, on a laser also so that it does not heat one place.
-    Lances come after the holes, so that no hole is struck beside formed metal (common practice:
-    formed hits last). Drawings from the star side are mirrored in Y, but for the lettering, which reads
-    right on the side drawn.
+    A press strikes the holes that one of its tools makes, and strikes them first, so that none is struck
+    beside formed metal (common practice: formed hits last). Drawings from the star side are mirrored in
+    Y, but for the lettering, which reads right on the side drawn.
 
     Args:
         disc: The disc; one without projections gives the bare blank.
@@ -48,9 +48,8 @@ def plan_cuts(
     """
     order = cutting_order(disc)
     at_mm = struck_at_mm(disc, order)
-    mirror = -1 if disc.cutter.drawn_from == "star-side" else 1
-    marking = _marking(disc, mirror)
-    cut = _cut(disc, order)
+    marking = marking_of(disc)
+    cut, held_slug_count = _cut(disc, order)
     words = Words(
         title=title,
         fingerprint=fingerprint,
@@ -58,9 +57,10 @@ def plan_cuts(
         is_record=False,
         part=part,
         order_number=order_number,
+        held_slug_count=held_slug_count,
     )
     drawings = [
-        _drawing(marking, entities, replace(words, is_record=is_record))
+        _drawing(disc, marking, entities, replace(words, is_record=is_record))
         for is_record, entities in ((False, cut), (True, (*formed_projections(disc, order), *cut)))
     ]
     return CutPlan(
@@ -72,40 +72,34 @@ def plan_cuts(
         disc=drawings[0],
         record=drawings[1],
         order=order,
-        at_mm=at_mm if mirror > 0 else mirrored_points_mm(at_mm),
+        at_mm=_points_as_drawn_mm(at_mm, marking.mirror),
         tool=disc.pattern.tool,
         path=path_of(disc, drawings[0], order),
+        order_number=order_number,
+        hole_hits=tuple(
+            ToolHits(tool=hits.tool.tool, at_mm=_points_as_drawn_mm(hits.at_mm, marking.mirror))
+            for hits in struck_holes(disc)
+        ),
+        not_struck=not_struck(disc.movement, disc.cutter),
     )
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class _Marking:
-    """What the marks of both drawings share: the disc, the index mark and the room beside it, as drawn."""
-
-    disc: Disc
-    rooms: Rooms
-    mark: Outlines | None
-    mirror: int
+def _points_as_drawn_mm(points_mm: FloatArray, mirror: int) -> FloatArray:
+    return points_mm if mirror > 0 else mirrored_points_mm(points_mm)
 
 
-def _marking(disc: Disc, mirror: int) -> _Marking:
-    rooms, rim_mm = Rooms(disc=disc), disc.movement.disc.outer_diameter_mm / 2
-    mark = index_mark(rooms, rim_mm=rim_mm, direction=disc.turning.direction)
-    if mark is not None:
-        rooms = replace(rooms, taken=(shapely.LineString(mark.points_mm[0]),))
-    return _Marking(disc=disc, rooms=replace(rooms, mirror=mirror), mark=mark, mirror=mirror)
-
-
-def _cut(disc: Disc, order: IntArray) -> tuple[Entity, ...]:
+def _cut(disc: Disc, order: IntArray) -> tuple[tuple[Entity, ...], int]:
+    """All that is cut, and how many slugs its bridges hold."""
     projections, blank = cut_projections(disc, order), holes(disc.movement)
-    inner = (*blank, *projections) if disc.pattern.making == "lance" else (*projections, *blank)
-    drawn = (as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement)))
-    held = (part for entity in drawn for part in with_bridges(entity, disc.cutter))
-    return tuple(led_in for entity in held for led_in in with_leads(entity, disc.cutter))
+    inner = (*blank, *projections) if disc.cutter.kind == "punch-press" else (*projections, *blank)
+    drawn = [as_the_beam_runs(entity, disc.cutter) for entity in (*inner, rim(disc.movement))]
+    slugs_held = [part for entity in drawn for part in with_held_slugs(entity, disc.movement, disc.cutter)]
+    held = (part for entity in slugs_held for part in with_bridges(entity, disc.cutter))
+    led_in = tuple(part for entity in held for part in with_leads(entity, disc.cutter))
+    return led_in, loose_slug_count(drawn) - loose_slug_count(slugs_held)
 
 
-def _drawing(marking: _Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
-    disc = marking.disc
+def _drawing(disc: Disc, marking: Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
     rim_mm = disc.movement.disc.outer_diameter_mm / 2
     letters = lettering(marking.rooms, inscriptions(disc, words), rim_mm=rim_mm)
     marks = () if marking.mark is None else (marking.mark,)

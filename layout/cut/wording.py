@@ -15,6 +15,8 @@ RECORD = "RECORD - NOT FOR CUTTING"
 MOST_LETTERS = (32, 24, 16)
 # The labels from the top line to the lowest.
 _AS_READ = ("title", "part", "movement", "side", "burr", "kerf", "order", "fingerprint")
+# What each is called in words for a person.
+_NAMES = {"part": "disc of the set", "burr": "burr side", "kerf": "kerf that is compensated", "order": "order number"}
 MOST_COMMENT = 250  # characters; DXF reference: strings of releases before 2000 end at 255 bytes
 
 
@@ -24,11 +26,12 @@ class Words:
 
     Attributes:
         title: The tune's title.
-        fingerprint: Of all inputs.
+        fingerprint: Of all inputs; "" for none, which is neither lettered nor told at the head.
         not_good: The reason for which a faulty disc is cut, if it is.
         is_record: Whether it is the record, which is never cut.
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
         order_number: The shop's; None for none.
+        held_slug_count: How many slugs of holes and slots hang on bridges.
     """
 
     title: str
@@ -37,6 +40,7 @@ class Words:
     is_record: bool
     part: str = ""
     order_number: str | None = None
+    held_slug_count: int = 0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -46,11 +50,13 @@ class Inscription:
     Attributes:
         forms: What it says, in printable ASCII; the fullest form first, then ever shorter ones.
         row: Where it stands among the others, read from the top.
+        name: What it is, for a person.
         is_warning: Whether it may even stand among openings, rather than be missing.
     """
 
     forms: tuple[str, ...]
     row: int
+    name: str
     is_warning: bool = False
 
 
@@ -70,9 +76,10 @@ def head_lines(disc: Disc, words: Words) -> tuple[str, ...]:
         f"movement: {movement.id} revision {movement.revision}",
         f"blank: {movement.disc.material}, {movement.disc.thickness_mm:g} mm thick",
         f"cutter: {cutter.id}",
-        f"fingerprint: {words.fingerprint}",
+        *([f"fingerprint: {words.fingerprint}"] if words.fingerprint else []),
         f"drawn from the {_side(cutter)}; origin at the disc centre; millimetres",
         *_how_it_is_drawn(disc),
+        *_how_slugs_are_held(cutter, words.held_slug_count),
         "index mark: at disc angle 0; its barb points the way the disc turns",
     ]
     kept = f"title: {words.title}" if is_mostly_lost(words.title) else None
@@ -86,7 +93,10 @@ def inscriptions(disc: Disc, words: Words) -> tuple[Inscription, ...]:
     last. A title that is mostly lost in ASCII is left out; so is one of blanks.
     """
     warnings = (RECORD,) * words.is_record + (NOT_GOOD,) * (words.not_good is not None)
-    lines = [Inscription(forms=(text,), row=row, is_warning=True) for row, text in enumerate(warnings)]
+    lines = [
+        Inscription(forms=(text,), row=row, name=f"warning {text}", is_warning=True)
+        for row, text in enumerate(warnings)
+    ]
     if disc.cutter.labels:
         lines += _labels(disc, words, below=len(warnings))
     return tuple(lines)
@@ -104,13 +114,17 @@ def _labels(disc: Disc, words: Words, *, below: int) -> list[Inscription]:
         # Never shortened: part of a number is another number.
         "order": () if words.order_number is None else (f"ORDER {words.order_number}", words.order_number),
         "burr": () if disc.cutter.burr_side is None else (f"BURR ON {_plainly(disc.cutter.burr_side).upper()}",),
-        "fingerprint": (words.fingerprint,),
+        "fingerprint": (words.fingerprint,) if words.fingerprint else (),
         "title": tuple(dict.fromkeys(_shortened(title, most) for most in MOST_LETTERS))
         if title and not is_mostly_lost(words.title)
         else (),
     }
     read = [name for name in _AS_READ if forms[name]]
-    return [Inscription(forms=says, row=below + read.index(name)) for name, says in forms.items() if says]
+    return [
+        Inscription(forms=says, row=below + read.index(name), name=_NAMES.get(name, name))
+        for name, says in forms.items()
+        if says
+    ]
 
 
 def _shortened(text: str, most: int) -> str:
@@ -123,6 +137,15 @@ def _side(cutter: Cutter) -> str:
 
 def _plainly(side: str) -> str:
     return side.replace("-", " ")
+
+
+def _how_slugs_are_held(cutter: Cutter, count: int) -> list[str]:
+    if cutter.bridges is None or cutter.bridges.slugs is None or not count:
+        return []
+    slugs = cutter.bridges.slugs
+    bridges = f"{'one bridge' if slugs.count == 1 else f'{slugs.count} bridges'} of {slugs.width_mm:g} mm"
+    held = "1 is" if count == 1 else f"{count} are"
+    return [f"slugs: {held} held, each by {bridges}; break them out by hand"]
 
 
 def _how_it_is_drawn(disc: Disc) -> list[str]:

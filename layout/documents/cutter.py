@@ -1,5 +1,6 @@
 """The cutter document: the machine that cuts, its numbers and its layer names."""
 
+from collections.abc import Mapping
 from typing import Annotated, Literal, Self
 
 from pydantic import Field, model_validator
@@ -76,21 +77,36 @@ class Tool(Part):
 
     A lance cuts three sides of its footprint and forms the tab in the same hit. A slot tool's
     footprint has round ends. `edge_ahead_mm` is how far the working edge lies ahead of the
-    strike point, in the direction of travel (negative: behind it).
+    strike point, in the direction of travel (negative: behind it). A hole tool strikes the blank's own
+    holes and slots; it has round ends whichever way it is longer, is round where both sizes are equal,
+    and has no working edge.
     """
 
     tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$")]
     title: Title
-    makes: Literal["lance", "slot"]
+    makes: Literal["lance", "slot", "hole"]
     footprint_length_mm: Length
     footprint_width_mm: Length
-    edge_ahead_mm: Offset
+    edge_ahead_mm: Offset = 0.0
     tab_width_mm: Length | None = None
     tab_depth_mm: Length | None = None
     foot: Foot | None = None
 
     @model_validator(mode="after")
+    def _hole_tools_only_strike_out(self) -> Self:
+        if self.makes != "hole":
+            if "edge_ahead_mm" not in self.model_fields_set:
+                raise ValueError(f"{self.makes} tool {self.tool} needs edge_ahead_mm")
+        elif self.edge_ahead_mm != 0:
+            raise ValueError(f"hole tool {self.tool} has no working edge; leave edge_ahead_mm out")
+        elif self.tab_width_mm is not None or self.tab_depth_mm is not None:
+            raise ValueError(f"hole tool {self.tool} forms no tab; leave tab_width_mm and tab_depth_mm out")
+        return self
+
+    @model_validator(mode="after")
     def _fields_of_its_kind(self) -> Self:
+        if self.makes == "hole":
+            return self
         if self.makes == "lance":
             if self.tab_width_mm is None or self.tab_depth_mm is None:
                 raise ValueError(f"lance tool {self.tool} needs tab_width_mm and tab_depth_mm")
@@ -113,8 +129,30 @@ class Layer(Part):
     colour: Annotated[int, Field(ge=1, le=255)]
 
 
+def layer_of(layers: Mapping[str, Layer], ours: str) -> Layer:
+    """The layer name and colour wanted for one of our layer names: ours where nothing else is."""
+    return layers.get(ours) or Layer(name=ours, colour=LAYER_COLOURS[ours])
+
+
+def check_layers(layers: Mapping[str, Layer]) -> None:
+    """Raise ValueError where layers are wanted for a name that is none of ours, or two would be one."""
+    unknown = sorted(set(layers) - set(LAYER_COLOURS))
+    if unknown:
+        raise ValueError(f"layers: no layer of ours is called {unknown[0]!r}; ours are {', '.join(LAYER_COLOURS)}")
+    seen: dict[str, str] = {}
+    for ours in LAYER_COLOURS:
+        wanted = layer_of(layers, ours).name
+        if wanted.casefold() in seen:
+            raise ValueError(f"layers: {seen[wanted.casefold()]} and {ours} would share the layer {wanted!r}")
+        seen[wanted.casefold()] = ours
+
+
 class Cutter(Part):
-    """A cutting machine and what it can do to the sheet."""
+    """A cutting machine and what it can do to the sheet.
+
+    `drawn_from` may be left out where the press states which way it `forms`: formed up, the star side lies above and
+    is drawn; formed down, the label side.
+    """
 
     format: Literal["discwright-cutter/1"]
     id: Identifier
@@ -142,6 +180,16 @@ class Cutter(Part):
     tolerance_class: ToleranceClass | None = None
     press: Press | None = None
 
+    @model_validator(mode="before")
+    @classmethod
+    def _shows_the_upper_face(cls, value: object) -> object:
+        """The side drawn where none is stated, by the way the press forms: tabs stand on the star side."""
+        press = value.get("press") if isinstance(value, Mapping) else None
+        if not isinstance(value, Mapping) or not isinstance(press, Mapping) or "drawn_from" in value:
+            return value
+        side = {"up": "star-side", "down": "label-side"}.get(str(press.get("forms")))
+        return value if side is None else {**value, "drawn_from": side}
+
     @model_validator(mode="after")
     def _parts_of_its_kind(self) -> Self:
         if self.kind == "punch-press" and self.fold is not None:
@@ -163,20 +211,12 @@ class Cutter(Part):
 
     @model_validator(mode="after")
     def _layers_stay_apart(self) -> Self:
-        unknown = sorted(set(self.layers) - set(LAYER_COLOURS))
-        if unknown:
-            raise ValueError(f"layers: no layer of ours is called {unknown[0]!r}; ours are {', '.join(LAYER_COLOURS)}")
-        seen: dict[str, str] = {}
-        for ours in LAYER_COLOURS:
-            theirs = self.layer(ours).name.casefold()
-            if theirs in seen:
-                raise ValueError(f"layers: {seen[theirs]} and {ours} would share the layer {self.layer(ours).name!r}")
-            seen[theirs] = ours
+        check_layers(self.layers)
         return self
 
     def layer(self, ours: str) -> Layer:
         """The layer name and colour this cutter wants for one of our layer names."""
-        return self.layers.get(ours) or Layer(name=ours, colour=LAYER_COLOURS[ours])
+        return layer_of(self.layers, ours)
 
 
 def read_cutter(text: str | bytes) -> Cutter:

@@ -12,6 +12,7 @@ from pydantic import BeforeValidator, Field, WithJsonSchema, model_validator
 from layout.documents.reading import Angle, Length, Part, Positive, PositiveAngle, TimeOrZero
 
 MOST_BRIDGES = 24  # bridges round the rim; a few hold a disc
+MOST_SLUG_BRIDGES = 6  # bridges of one slug; one or two hold it
 MOST_RATIO = 20.0  # times the thickness; far above any rule for sheet
 MOST_TAKE_UP_DEG = 30.0  # degrees; far more than any table has play
 
@@ -66,11 +67,25 @@ class LeadIn(Part):
     length_mm: Length
 
 
+class SlugBridges(Part):
+    """Metal left in the cuts of holes and slots that holds each slug till it is knocked out.
+
+    Held is a slug whose longest side is `least_slug_mm` or more: one that can lie on two slats of the machine's bed
+    and tip up between them into the head's way. Smaller ones fall through. The slug is the opening less the kerf on
+    every side. A folded tab's channel leaves a strip too thin to tip; its slug is never held.
+    """
+
+    count: Annotated[int, Field(ge=1, le=MOST_SLUG_BRIDGES)]
+    width_mm: Length
+    least_slug_mm: Length
+
+
 class Bridges(Part):
-    """Metal left in the rim's cut that holds the disc in the sheet till it is broken out."""
+    """Metal left in the rim's cut that holds the disc in the sheet till it is broken out; and its slugs, if wanted."""
 
     count: Annotated[int, Field(ge=1, le=MOST_BRIDGES)]
     width_mm: Length
+    slugs: SlugBridges | None = None
 
 
 class FeatureRules(Part):
@@ -106,7 +121,9 @@ class Press(Part):
 
     `stripping_share` is the force that pulls the punch out, as a share of the cutting force. The
     words go into press.nc where they stand in braces: `{tool}` in `change_word`. `take_up_deg` is how far the
-    table goes past and comes back, where it must come onto every hit from one side.
+    table goes past and comes back, where it must come onto every hit from one side. `forms` is the way its
+    tools bend the tabs as the sheet lies on the machine; the drawing shows the upper face, unless the cutter states
+    another side.
     """
 
     capacity_n: Positive | None = None
@@ -116,6 +133,7 @@ class Press(Part):
     change_word: Word = "T{tool} M6"
     turns_one_way: bool = True
     take_up_deg: Annotated[PositiveAngle, Field(le=MOST_TAKE_UP_DEG)] = 1.0
+    forms: Literal["up", "down"] | None = None
 
     @model_validator(mode="after")
     def _change_names_the_tool(self) -> Self:

@@ -29,9 +29,10 @@ from layout.documents.reading import (
     TimeOrZero,
     Title,
     check_document,
+    moved,
     read_json,
 )
-from layout.errors import DocumentError, Problem
+from layout.errors import DocumentError
 
 MOST_TRACKS = 200  # tracks; far above any comb, keeps a document from being made slow
 MOST_TEETH = 400  # teeth; two combs of MOST_TRACKS
@@ -362,27 +363,14 @@ def read_movement(text: str | bytes) -> Movement:
         plain = {**plain, "tracks": _listed_tracks(plain["tracks"])}
         stated |= _worth_of_listed(stated, len(plain["tracks"]))
     movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)
-    movement._stated.update({pointer: _checked_worth(pointer, value) for pointer, value in stated.items()})
+    movement._stated.update(stated)
     return movement
 
 
-def _checked_worth(pointer: str, value: Json) -> Stated:
-    try:
-        return check_document(Stated, value, document="movement")
-    except DocumentError as error:
-        raise _moved(error, pointer) from error
-
-
-def _moved(error: DocumentError, pointer: str) -> DocumentError:
-    """The error of a part, with its places as they are in the whole document."""
-    problems = tuple(Problem(pointer=f"{pointer}{p.pointer}", message=p.message) for p in error.problems)
-    return DocumentError(document=error.document, problems=problems)
-
-
-def _worth_of_listed(stated: Mapping[str, Json], count: int) -> dict[str, Json]:
+def _worth_of_listed(stated: Mapping[str, Stated], count: int) -> dict[str, Stated]:
     """Every listed radius is worth what the worse of the two radii it lies between is worth."""
     ends = [stated[f"/tracks/{end}_radius_mm"] for end in ("first", "last") if f"/tracks/{end}_radius_mm" in stated]
-    worst = max(ends, key=lambda end: _checked_worth("/tracks", end).plus_minus, default=None)
+    worst = max(ends, key=lambda end: end.plus_minus, default=None)
     return {} if worst is None else {f"/tracks/{index}/radius_mm": worst for index in range(count)}
 
 
@@ -390,7 +378,7 @@ def _listed_tracks(spread: Json) -> list[Json]:
     try:
         row = check_document(TrackRange, spread, document="movement")
     except DocumentError as error:
-        raise _moved(error, "/tracks") from error
+        raise moved(error, "/tracks") from error
     step_mm = (row.last_radius_mm - row.first_radius_mm) / max(row.count - 1, 1)
     # Rounded to a nanometre: 36 + 7 * 2.62 would otherwise print as 54.339999999999996.
     return [

@@ -6,6 +6,7 @@ number is worth is kept beside it, under the number's JSON pointer.
 """
 
 import json
+import math
 import re
 from collections import Counter
 from collections.abc import Mapping
@@ -17,6 +18,8 @@ from layout.errors import DocumentError, Problem
 
 MOST_LEVELS = 12  # lists and objects in each other; the deepest document has five
 MOST_DIGITS = 400  # of a whole number: more than the greatest a double holds
+MOST_SHOWN = 120  # characters of a value that a message shows: as many as the longest title has
+_HALF_CHARACTER = re.compile("[\ud800-\udfff]")
 _TOO_DEEP = f"lists and objects are nested more than {MOST_LEVELS} deep; a document needs fewer"
 Json = Any  # what json.loads gives: the one place where the type is not known yet
 
@@ -38,10 +41,14 @@ class Stated(Part):
 _JSON_NAMES = {dict: "an object", list: "a list", str: "text", bool: "true or false", type(None): "null"}
 
 
+def _shortened(text: str) -> str:
+    return text if len(text) <= MOST_SHOWN else f"{text[:MOST_SHOWN]}... ({len(text)} characters)"
+
+
 def _named(value: object) -> str:
     """What a JSON value is, in JSON's words; a number or a short text as it stands."""
     if isinstance(value, str) or not isinstance(value, tuple(_JSON_NAMES)):
-        return repr(value)
+        return _shortened(repr(value))
     return json.dumps(value) if isinstance(value, bool) else _JSON_NAMES[type(value)]
 
 
@@ -103,7 +110,7 @@ Title = Annotated[str, Field(min_length=1, max_length=120)]
 DocumentT = TypeVar("DocumentT", bound=Part)
 
 
-def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Json]]:
+def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Stated]]:
     """The JSON value of a text with every stated number made plain, and what was stated.
 
     Args:
@@ -111,37 +118,97 @@ def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Json
         document: Word for error messages.
 
     Returns:
-        The plain value, and the stated objects by the JSON pointer of the number.
+        The plain value, and what each stated number is worth by the JSON pointer of the number.
 
     Raises:
-        DocumentError: Not UTF-8 JSON, nested too deep, or it holds NaN or an infinity (RFC 8259 has neither).
+        DocumentError: Not UTF-8 JSON, nested too deep, a name given twice, a number no double holds, half a
+            character, or a worth that is not valid. RFC 8259 has neither NaN nor infinities.
     """
-
-    def refuse(name: str) -> Json:
-        raise ValueError(f"{name} is not a JSON number")
-
     try:
-        value = json.loads(text, parse_constant=refuse, parse_int=_whole, object_pairs_hook=_without_doubles)
-        return _take_apart(value, "", MOST_LEVELS)
-    except RecursionError as error:
-        raise DocumentError(document=document, problems=(Problem(pointer="", message=_TOO_DEEP),)) from error
-    except ValueError as error:
-        message = f"not JSON: {error}; write the document as one JSON object"
-        raise DocumentError(document=document, problems=(Problem(pointer="", message=message),)) from error
+        value = json.loads(
+            text, parse_constant=_no_number, parse_int=_whole, parse_float=_real, object_pairs_hook=_without_doubles
+        )
+        plain, stated = _take_apart(value, "", MOST_LEVELS)
+    except (ValueError, RecursionError) as error:
+        pointer, message = _what_is_wrong(error)
+        raise DocumentError(document=document, problems=(Problem(pointer=pointer, message=message),)) from error
+    return plain, _checked_worths(stated, document)
 
 
-def _whole(digits: str) -> int:
+class _Unfit(ValueError):
+    """JSON that no document of ours may hold: where, and why."""
+
+    def __init__(self, message: str, pointer: str = "") -> None:
+        super().__init__(message)
+        self.pointer = pointer
+
+
+def _what_is_wrong(error: ValueError | RecursionError) -> tuple[str, str]:
+    """The JSON pointer of a fault and what it is, in words for a person."""
+    match error:
+        case RecursionError():
+            return "", _TOO_DEEP
+        case _Unfit():
+            return error.pointer, str(error)
+        case UnicodeDecodeError():
+            seen = f"0x{error.object[error.start]:02x}"
+            return "", f"not UTF-8: byte {seen} at place {error.start} is no part of a character; save it as UTF-8"
+        case json.JSONDecodeError() if not error.doc.strip():
+            return "", "the document is empty; write it as one JSON object"
+        case _:
+            return "", f"not JSON: {error}; write the document as one JSON object"
+
+
+def _no_number(name: str) -> Json:
+    raise ValueError(f"{name} is not a JSON number")
+
+
+def _whole(written: str) -> int:
+    digits = written.removeprefix("-")
     if len(digits) > MOST_DIGITS:
-        raise ValueError(f"a number of {len(digits)} digits; {MOST_DIGITS} are the most any field needs")
-    return int(digits)
+        raise _Unfit(f"a number has {len(digits)} digits; {MOST_DIGITS} are the most any field needs")
+    return int(written)
+
+
+def _real(written: str) -> float:
+    value = float(written)
+    if math.isinf(value):
+        raise _Unfit(f"the number {_shortened(written)} is larger than any field needs")
+    return value
 
 
 def _without_doubles(pairs: list[tuple[str, Json]]) -> dict[str, Json]:
     found = dict(pairs)
     if len(found) < len(pairs):
         double, _ = Counter(name for name, _ in pairs).most_common(1)[0]
-        raise ValueError(f"the field {double!r} is given twice")
+        raise _Unfit(f"the field {_shortened(repr(double))} is given twice; leave one of them out")
     return found
+
+
+def _whole_characters(text: str, pointer: str) -> None:
+    half = _HALF_CHARACTER.search(text)
+    if half is not None:
+        seen = f"\\u{ord(half[0]):04x}"
+        raise _Unfit(f"{seen} is half a character; write the character itself, or both halves of it", pointer)
+
+
+def _checked_worths(stated: Mapping[str, Json], document: str) -> dict[str, Stated]:
+    worths: dict[str, Stated] = {}
+    problems: list[Problem] = []
+    for pointer, value in stated.items():
+        try:
+            worths[pointer] = check_document(Stated, value, document=document)
+        except DocumentError as error:
+            problems += moved(error, pointer).problems
+    if problems:
+        raise DocumentError(document=document, problems=tuple(problems))
+    return worths
+
+
+def moved(error: DocumentError, pointer: str) -> DocumentError:
+    """The error of a part, with its places as they are in the whole document."""
+    problems = tuple(Problem(pointer=f"{pointer}{p.pointer}", message=p.message) for p in error.problems)
+    return DocumentError(document=error.document, problems=problems)
 
 
 def _escaped(key: str) -> str:
@@ -151,8 +218,10 @@ def _escaped(key: str) -> str:
 
 def _take_apart(value: Json, pointer: str, levels: int) -> tuple[Json, dict[str, Json]]:
     if not levels:
-        raise ValueError(_TOO_DEEP)
+        raise _Unfit(_TOO_DEEP)
     if isinstance(value, dict):
+        for key in value:
+            _whole_characters(key, pointer)
         if "value" in value and set(value) <= set(Stated.model_fields):
             return value["value"], {pointer: value}
         pairs = [(key, *_take_apart(item, f"{pointer}/{_escaped(key)}", levels - 1)) for key, item in value.items()]
@@ -161,6 +230,8 @@ def _take_apart(value: Json, pointer: str, levels: int) -> tuple[Json, dict[str,
     if isinstance(value, list):
         parts = [_take_apart(item, f"{pointer}/{place}", levels - 1) for place, item in enumerate(value)]
         return [item for item, _ in parts], {place: s for _, found in parts for place, s in found.items()}
+    if isinstance(value, str):
+        _whole_characters(value, pointer)
     return value, {}
 
 
@@ -197,5 +268,5 @@ def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
     message = fault["msg"].removeprefix("Value error, ")
     seen = fault.get("input")
     if isinstance(seen, str | int | float) and "got" not in message and fault["type"] != "value_error":
-        message = f"{message}, got {seen!r}"
+        message = f"{message}, got {_shortened(repr(seen))}"
     return Problem(pointer=place, message=message)

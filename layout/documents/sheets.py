@@ -6,12 +6,15 @@ from typing import Annotated, Literal, Self
 from pydantic import Field, field_validator, model_validator
 from shapely import Polygon, is_valid_reason
 
+from layout.documents.cutter import Layer, check_layers, layer_of
 from layout.documents.reading import LEAST_MM, Identifier, Length, LengthOrZero, Part, Title, check_document, read_json
 from layout.limits import limit
 
 FORMAT = "discwright-sheets/1"
 LEAST_AREA_MM2 = 1.0  # mm²; below it an outline is a slip of the pen, not a piece of sheet
 LEAST_CORNERS = 3
+# Layers of a sheet's drawing that no cutter may give another meaning: they are never cut.
+STOCK_LAYER, CLAMPS_LAYER = "STOCK", "CLAMPS"
 LEAST_REMNANT_MM = 100.0  # mm; unless the job says otherwise: a hand's width, worth a place in the rack
 
 
@@ -25,6 +28,7 @@ class SheetLimits:
     discs: int = limit(
         2000, "discs", "most discs of all kinds together; a full sheet of them takes a quarter of a minute"
     )
+    least_disc_mm: int = limit(1, "mm", "least diameter of a disc: smaller ones are never told from dirt")
     outline_corners: int = limit(500, "corners", "most corners of an outline with its openings: a much cut remnant")
     job_corners: int = limit(1600, "corners", "most corners of all outlines of a job: a rack of remnants, each with 50")
     clamps: int = limit(20, "zones", "most clamp zones of a sheet: more than a bed has clamps")
@@ -132,7 +136,7 @@ class WantedDiscs(Part):
     """Discs of one diameter that are wanted."""
 
     id: Identifier
-    diameter_mm: Length
+    diameter_mm: Annotated[Length, Field(ge=LIMITS.least_disc_mm)]
     quantity: Quantity
 
 
@@ -140,8 +144,10 @@ class SheetJob(Part):
     """Discs and the stock to lay them on. Stock is used in the order in which it is listed.
 
     `gap_mm` is left between two rims, `margin_mm` between a rim and an edge; both count to the
-    nominal rim, so they must hold the kerf. `least_remnant_mm` is the width below which what is
-    left of a sheet is scrap.
+    nominal rim, so they must hold the kerf; where a disc's drawing is compensated, to the rim as it is
+    drawn. `least_remnant_mm` is the width below which what is left of a sheet is scrap.
+    `layers` are those of the cutter, where it has names of its own: drawings of discs have them, and
+    the sheets get them. With `labels` each disc's id and number are lettered beside it.
     """
 
     format: Literal["discwright-sheets/1"]
@@ -151,6 +157,8 @@ class SheetJob(Part):
     least_remnant_mm: Length = LEAST_REMNANT_MM
     stock: Annotated[tuple[Stock, ...], Field(max_length=LIMITS.stock_kinds)]
     discs: Annotated[tuple[WantedDiscs, ...], Field(max_length=LIMITS.disc_kinds)]
+    layers: dict[str, Layer] = Field(default_factory=dict)
+    labels: Annotated[bool, Field(strict=True)] = True
 
     @field_validator("stock")
     @classmethod
@@ -163,11 +171,26 @@ class SheetJob(Part):
             )
         return stock
 
+    @field_validator("layers")
+    @classmethod
+    def _layers_stay_apart(cls, layers: dict[str, Layer]) -> dict[str, Layer]:
+        check_layers(layers)
+        for ours, layer in layers.items():
+            if layer.name.upper() in (STOCK_LAYER, CLAMPS_LAYER):
+                raise ValueError(
+                    f"layers: {ours} would be the layer {layer.name!r}, which is never cut; give it another name"
+                )
+        return layers
+
     @field_validator("discs")
     @classmethod
     def _discs_are_bounded(cls, discs: tuple[WantedDiscs, ...]) -> tuple[WantedDiscs, ...]:
         _check_listed([(each.id, each.quantity) for each in discs], "discs", LIMITS.discs)
         return discs
+
+    def layer(self, ours: str) -> Layer:
+        """The layer name and colour wanted for one of our layer names."""
+        return layer_of(self.layers, ours)
 
 
 def _check_listed(listed: list[tuple[str, int]], what: str, most: int) -> None:

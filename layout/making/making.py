@@ -54,6 +54,24 @@ class PriceLine:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class ToolWork:
+    """What one tool of a press does to make one disc.
+
+    Attributes:
+        tool: Its name.
+        hit_count: Strikes.
+        hit_force_n: That one of them takes to cut, with a sharp tool; None where the shear strength is not stated.
+        press_force_n: That the press must give for it: cutting and stripping; None as `hit_force_n`, and where the
+            cutter states no press.
+    """
+
+    tool: str
+    hit_count: int
+    hit_force_n: float | None
+    press_force_n: float | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Making:
     """What the machine does to make one disc, and what that takes.
 
@@ -63,18 +81,22 @@ class Making:
         mark_length_mm: Along all that is marked.
         rapid_length_mm: Between cuts and marks.
         pierce_count: Cuts begun.
-        hit_count: Strikes of a press.
-        hit_force_n: That one projection's hit takes, with a sharp tool; None on a laser, where no tool fits, and
-            where the shear strength is not stated.
+        hit_count: Strikes of a press, by all its tools.
+        hit_force_n: That one projection's hit takes to cut, with a sharp tool; None on a laser, where no tool fits,
+            and where the shear strength is not stated.
         stripping_force_n: That pulls the punch out again after it; None as `hit_force_n`, and where the cutter
             states no press.
+        press_force_n: The most that the press must give for any hit of the disc: cutting and stripping together;
+            None where it cannot be told for every tool, and on a laser.
+        tool_change_count: Tools taken up after the first; None where the path is not worked out.
+        tools: What each tool of a press does, in the order taken up; empty on a laser.
         fold_to_rad: The angle the tabs are bent to, so that they stand at 90° once let go; None where nothing is
             folded, and where the springback is not stated.
         blank_mass_kg: The round blank before anything is cut in it; None where the density is not stated.
         disc_mass_kg: The disc as it is played: the blank less all that falls out; None as the blank's.
         time_parts: The machine's time, part by part.
-        time_s: Their sum; None where one of them is. Loading, unloading and breaking out are not in it, nor on a
-            press the blank's own holes and rim, since how they are struck is not stated.
+        time_s: Their sum; None where one of them is. Loading, unloading and breaking out are not in it, nor what
+            `not_counted` names.
         price_lines: One for each rate the shop states and whose quantity can be told.
         total: The lines' exact sum; None where a stated rate has no quantity, or no rate is stated.
         currency: Of the amounts, by ISO 4217; None where no rates are stated.
@@ -82,8 +104,9 @@ class Making:
             the currency's smallest unit is not known here: amounts are then exact, and not rounded.
         not_stated: Fields of the documents that would be needed for a figure that is missing, such as
             "cutter.feeds.cut_mm_per_s"; empty where all can be told.
-        not_counted: What no figure of time and price counts, since no document says how it is made: on a press
-            the holes, the rim and taking up the first tool; empty on a laser.
+        not_counted: What no figure of time and price counts, each with the reason in brackets: on a press the
+            rim, holes and projections that none of its tools makes, and the first tool, which is taken to be in the
+            press already; empty on a laser.
     """
 
     cut_length_mm: float | None = None
@@ -93,6 +116,9 @@ class Making:
     hit_count: int | None = None
     hit_force_n: float | None = None
     stripping_force_n: float | None = None
+    press_force_n: float | None = None
+    tool_change_count: int | None = None
+    tools: tuple[ToolWork, ...] = ()
     fold_to_rad: float | None = None
     blank_mass_kg: float | None = None
     disc_mass_kg: float | None = None

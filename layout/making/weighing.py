@@ -5,9 +5,8 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from layout.documents.cutter import SAME_PLACE_MM
 from layout.documents.movement import DiscBlank, Feature
-from layout.mechanics.blank import feature_axes
+from layout.mechanics.blank import features_once
 from layout.mechanics.projection import Pattern, Shape
 from layout.place.disc import Disc
 
@@ -74,15 +73,7 @@ def _circle_mm2(diameter_mm: float) -> float:
 
 def _feature_areas_mm2(blank: DiscBlank) -> Iterator[float]:
     """The area of every feature; a hole, slot or notch that two rows share counts once, as it is cut once."""
-    seen: set[tuple[float | str, ...]] = set()
-    for feature in blank.features:
-        for angle_rad in np.radians(feature.angles_deg):
-            centre_mm = feature.radius_mm * feature_axes(float(angle_rad))[0]
-            place = (round(float(value) / SAME_PLACE_MM) for value in centre_mm)
-            key = (feature.shape, feature.length_mm, feature.width_mm, *place)
-            if key not in seen:
-                seen.add(key)
-                yield _feature_mm2(feature, blank.outer_diameter_mm / 2)
+    return (_feature_mm2(feature, blank.outer_diameter_mm / 2) for feature, _ in features_once(blank))
 
 
 def _feature_mm2(feature: Feature, rim_mm: float) -> float:

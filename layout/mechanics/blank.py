@@ -1,12 +1,14 @@
 """The blank's own features: the shape of each hole, slot or notch of a row."""
 
 import math
+from collections.abc import Iterator
 
 import numpy as np
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layout.documents.movement import Feature
+from layout.documents.cutter import SAME_PLACE_MM
+from layout.documents.movement import DiscBlank, Feature
 from layout.mechanics.arrays import FloatArray
 
 
@@ -34,3 +36,16 @@ def feature_core_mm(feature: Feature, angle_rad: float) -> tuple[BaseGeometry, f
     half_out, half_along = out * feature.width_mm / 2, along * feature.length_mm / 2
     corners = [centre - half_out - half_along, centre + half_out - half_along]
     return shapely.Polygon([*corners, centre + half_out + half_along, centre - half_out + half_along]), 0.0
+
+
+def features_once(blank: DiscBlank) -> Iterator[tuple[Feature, float]]:
+    """Every feature with its angle in degrees; one that two rows share comes once, as it is made once."""
+    seen: set[tuple[bool | float, ...]] = set()
+    for feature in blank.features:
+        for angle_deg in feature.angles_deg:
+            centre_mm = feature.radius_mm * feature_axes(math.radians(angle_deg))[0]
+            place = (round(float(value) / SAME_PLACE_MM) for value in centre_mm)
+            key = (feature.shape == "notch", feature.length_mm, feature.width_mm, *place)
+            if key not in seen:
+                seen.add(key)
+                yield feature, angle_deg

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from itertools import pairwise
 
 from layout.documents.cutter import Cutter
-from layout.documents.making import Bridges
+from layout.documents.making import Bridges, SlugBridges
 from layout.documents.movement import Movement
 from layout.mechanics.turning import FULL_TURN_RAD
 
@@ -20,13 +20,13 @@ class Gap:
     to_rad: float
 
 
-def gap_mm(cutter: Cutter, bridges: Bridges) -> float:
+def gap_mm(cutter: Cutter, bridges: Bridges | SlugBridges) -> float:
     """How long the gap in the drawn line is: the beam takes half a kerf more at either end."""
     return bridges.width_mm + cutter.kerf_mm
 
 
 def gaps_in(arcs_rad: list[tuple[float, float]], *, count: int, width_rad: float) -> list[list[Gap]] | None:
-    """Gaps for bridges on the arcs of a rim, shared out by their lengths and even on each.
+    """Gaps for bridges on the arcs of a rim, or any other stretches, shared out by their lengths and even on each.
 
     Every bridge goes to the arc whose stretches are then longest (as seats are given by D'Hondt's
     method); the gaps of an arc stand in the middles of equal stretches of it.

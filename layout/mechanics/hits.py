@@ -1,4 +1,7 @@
-"""The hits of a press on one disc: where they strike, what must be struck first, and in what order."""
+"""The hits of a press on one disc: where they strike, what must be struck first, and in what order.
+
+Hits of the blank's own holes stand in layout.mechanics.hole_hits.
+"""
 
 import math
 from dataclasses import dataclass
@@ -18,6 +21,31 @@ from layout.mechanics.table import Table, table_of
 from layout.mechanics.turning import Turning
 
 GRAIN_MM2 = 1e-6  # mm²; less than this of two areas in common is rounding
+
+
+def take_up_rad(cutter: Cutter) -> float:
+    """How far below an angle the press's table goes first; 0 where it may come onto it from either side."""
+    press = cutter.press or Press()
+    return math.radians(press.take_up_deg) if press.turns_one_way else 0.0
+
+
+def press_table(cutter: Cutter, radius_mm: FloatArray, forward_rad: FloatArray) -> Table:
+    """Strikes as the press's table and slide have to reach them, by the speeds stated.
+
+    Args:
+        cutter: The press.
+        radius_mm: Shape (n,). Where the slide stands for each.
+        forward_rad: Shape (n,). Its forward angle.
+    """
+    feeds = cutter.feeds or Feeds()
+    turn_deg_per_s = feeds.turn_deg_per_s
+    return table_of(
+        frozen_floats(radius_mm),
+        frozen_floats(forward_rad),
+        take_up_rad=take_up_rad(cutter),
+        turn_rad_per_s=None if turn_deg_per_s is None else math.radians(turn_deg_per_s),
+        slide_mm_per_s=feeds.slide_mm_per_s,
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -53,7 +81,7 @@ class Hits:
     @property
     def take_up_rad(self) -> float:
         """How far below an angle the table goes first; 0 where it may come onto it from either side."""
-        return math.radians(self.press.take_up_deg) if self.press.turns_one_way else 0.0
+        return take_up_rad(self.cutter)
 
     @property
     def at_mm(self) -> FloatArray:
@@ -118,7 +146,7 @@ class Hits:
     def order(self) -> IntArray:
         """Shape (n,). The hits in the order struck.
 
-        All hits of a disc are of one tool, so there is nothing to sort by tool. They are struck with
+        All projections of a disc are of one tool, so there is nothing to sort by tool. They are struck with
         little moving of table and slide, by the speeds stated. Where the tool's foot would stand on a
         neighbour formed before, and would not the other way round, they are struck the other way round.
         """
@@ -128,12 +156,4 @@ class Hits:
 
     def table(self) -> Table:
         """The hits as the table and the slide have to reach them."""
-        feeds = self.cutter.feeds or Feeds()
-        turn_deg_per_s = feeds.turn_deg_per_s
-        return table_of(
-            frozen_floats(self.radius_mm),
-            frozen_floats(self.forward_rad),
-            take_up_rad=self.take_up_rad,
-            turn_rad_per_s=None if turn_deg_per_s is None else math.radians(turn_deg_per_s),
-            slide_mm_per_s=feeds.slide_mm_per_s,
-        )
+        return press_table(self.cutter, self.radius_mm, self.forward_rad)

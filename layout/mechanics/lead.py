@@ -11,6 +11,7 @@ from layout.mechanics.arrays import FloatArray, frozen_floats
 _DIRECTIONS = 180  # ways tried round the start, every two degrees
 _CHORD_RAD = math.radians(3)  # of an arc between two points it is traced by: within 0.0004 of its radius
 _GRAIN_MM = 1e-6  # mm; a nanometre
+_SQUARE = 1e-9  # cosine; of a lead square to its line, which does not reach back
 _DIGITS = 6  # of clearances that are compared, in mm, so that the same way is best on every machine
 
 
@@ -20,7 +21,7 @@ def clear_of_lines_mm(cutter: Cutter) -> float:
 
 
 def pierced_inside_mm(
-    points_mm: FloatArray, bulges: FloatArray, *, length_mm: float, clear_mm: float
+    points_mm: FloatArray, bulges: FloatArray, *, length_mm: float, clear_mm: float, forwards_only: bool = False
 ) -> FloatArray | None:
     """Where to pierce inside a closed outline so that a straight lead runs to its first vertex.
 
@@ -32,6 +33,7 @@ def pierced_inside_mm(
         bulges: Shape (k,). DXF bulge of the piece that starts at each vertex.
         length_mm: Of the lead.
         clear_mm: How far the beam's middle must stay from the lines.
+        forwards_only: Whether the lead must not reach back from its end, where a bridge stands.
 
     Returns:
         Shape (2,); None where there is no room.
@@ -48,6 +50,9 @@ def pierced_inside_mm(
     clearance_mm = np.asarray(shapely.distance(scrap.exterior, shapely.points(places_mm)))
     fits = shapely.contains_xy(scrap, places_mm) & (clearance_mm >= max(clear_mm, _GRAIN_MM))
     fits &= shapely.covers(scrap.buffer(_GRAIN_MM), leads)
+    if forwards_only:
+        # The tangent at an arc's start is turned from its chord by half its angle, 2·atan(b).
+        fits &= np.cos(turn_rad + 2 * math.atan(bulges[0])) >= -_SQUARE
     if not others.is_empty:
         fits &= np.asarray(shapely.distance(others, leads)) >= clear_mm
     if not fits.any():

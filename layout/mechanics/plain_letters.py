@@ -48,12 +48,13 @@ def _plain(letter: str) -> str:
         return ""
     if kind == "Pd":
         return "-"
-    return _by_name(letter)
+    return latin_like(letter) or _UNKNOWN
 
 
-def _by_name(letter: str) -> str:
+def latin_like(letter: str) -> str:
+    """The one or two letters from A to Z that a Latin letter is like by its Unicode name, such as o for ø; else ""."""
     found = _NAMED.fullmatch(unicodedata.name(letter, ""))
     like = "" if found is None else _LETTERS_OF_NAMES.get(found[2], found[2])
     if found is None or len(like) > _MOST_LETTERS_IN_ONE:
-        return _UNKNOWN
+        return ""
     return like.lower() if found[1] == "SMALL" else like.capitalize()

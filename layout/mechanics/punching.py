@@ -14,12 +14,12 @@ def sheared_length_mm(tool: Tool) -> float:
     """The length of edge that one hit of the tool shears.
 
     A lance shears three sides of its footprint: both along the travel and the tab's free end; the
-    fourth is where the tab bends. A slot tool shears its whole outline, two straights and a circle.
+    fourth is where the tab bends. A slot or hole tool shears its whole outline, two straights and a circle.
     """
     length_mm, width_mm = tool.footprint_length_mm, tool.footprint_width_mm
     if tool.makes == "lance":
         return 2 * length_mm + width_mm
-    return 2 * (length_mm - width_mm) + math.pi * width_mm
+    return 2 * abs(length_mm - width_mm) + math.pi * min(length_mm, width_mm)
 
 
 def cutting_force_n(length_mm: float, thickness_mm: float, shear_strength_n_per_mm2: float) -> float:

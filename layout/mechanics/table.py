@@ -18,6 +18,7 @@ HALF_TURN_RAD = math.pi
 FULL_TURN_RAD = 2 * math.pi
 _SAME_RAD = 1e-12  # rad; two angles nearer than this are one, but for rounding
 LONGEST_TICKS = 1e9  # ticks; as fine as the nanometre of our files on a disc of a metre, and sums fit 64 bits
+MIDDLE_MM = 1e-6  # mm; a nanometre: a strike nearer the table's middle than this stands in it
 _SHARES = 1000  # of a tick; the shorter of two moves counts one of them, so that it decides only between equals
 
 
@@ -57,10 +58,28 @@ def table_moves(forward_rad: FloatArray, *, take_up_rad: float) -> TableMoves:
         return TableMoves(to_rad=frozen_floats([]), taken_up=np.zeros(0, dtype=np.bool_), take_up_rad=take_up_rad)
     steps = np.mod(np.diff(forward_rad), FULL_TURN_RAD)
     steps[steps > FULL_TURN_RAD - _SAME_RAD] = 0.0
-    steps = np.where(steps > HALF_TURN_RAD, steps - FULL_TURN_RAD, steps)
+    steps = np.where(steps > HALF_TURN_RAD + _SAME_RAD, steps - FULL_TURN_RAD, steps)
     to_rad = frozen_floats(float(forward_rad[0]) + np.concatenate([[0.0], np.cumsum(steps)]))
     taken_up = np.concatenate([[True], steps < 0]) if take_up_rad > 0 else np.zeros(len(to_rad), dtype=np.bool_)
     return TableMoves(to_rad=to_rad, taken_up=taken_up, take_up_rad=take_up_rad)
+
+
+def forward_angles_rad(at_mm: FloatArray, sense: int) -> FloatArray:
+    """Shape (n,). Forward angles of strikes in their order, in a turn from 0 the way of `sense`.
+
+    A strike in the table's middle is round and has no angle: it is made at the angle of the next strike
+    that has one, so that the table need not turn between them; else of the one before, else at 0.
+
+    Args:
+        at_mm: Shape (n, 2). Strike points in the order struck.
+        sense: +1 where angles rise the way the table turns onto its strikes, else −1.
+    """
+    turned_rad = sense * np.mod(np.arctan2(at_mm[:, 1], at_mm[:, 0]), FULL_TURN_RAD)
+    with_angle = np.flatnonzero(np.hypot(at_mm[:, 0], at_mm[:, 1]) >= MIDDLE_MM)
+    if not len(with_angle):
+        return frozen_floats(np.zeros(len(at_mm)))
+    next_one = np.searchsorted(with_angle, np.arange(len(at_mm)))
+    return frozen_floats(turned_rad[with_angle[np.minimum(next_one, len(with_angle) - 1)]])
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

@@ -1,12 +1,13 @@
 """What placing gives: the disc, as working edges on tracks."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.hits import Hits
+from layout.mechanics.net_section import MetalLeft, metal_left
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import Turning
 
@@ -31,6 +32,7 @@ class Disc:
     pattern: Pattern
     track_index: IntArray
     edge_angle_rad: FloatArray
+    _metal_left: list[MetalLeft | None] = field(default_factory=list, init=False, repr=False)
 
     @property
     def projection_count(self) -> int:
@@ -58,6 +60,16 @@ class Disc:
             edge_radius_mm=self.radius_mm,
             edge_angle_rad=self.edge_angle_rad,
         )
+
+    @property
+    def metal_left(self) -> MetalLeft | None:
+        """The least metal the openings leave, as `net_section` finds it: once, for check and report alike."""
+        if not self._metal_left:
+            features = self.movement.disc.features
+            self._metal_left.append(
+                metal_left(self.pattern, self.turning, self.track_index, self.edge_angle_rad, features)
+            )
+        return self._metal_left[0]
 
     @property
     def used_tracks(self) -> list[int]:

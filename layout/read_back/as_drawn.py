@@ -6,7 +6,7 @@ Nothing is mended, tidied or turned about: a file that is not plainly one of our
 import hashlib
 import math
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 
 import numpy as np
 from ezdxf.document import Drawing
@@ -20,10 +20,19 @@ from ezdxf.entities.polyline import Polyline
 from ezdxf.lldxf.const import DXF12
 from ezdxf.math import Vec3
 
-from layout.documents.cutter import LAYER_COLOURS
+from layout.documents.cutter import LAYER_COLOURS, Layer, layer_of
 from layout.errors import DrawingReadError
 from layout.mechanics.arrays import FloatArray, frozen_floats
-from layout.mechanics.drawn import DrawnCircle, DrawnDisc, DrawnEntity, DrawnLine, DrawnPoint, places_mm, reach_mm
+from layout.mechanics.drawn import (
+    DrawnArc,
+    DrawnCircle,
+    DrawnDisc,
+    DrawnEntity,
+    DrawnLine,
+    DrawnPoint,
+    places_mm,
+    reach_mm,
+)
 from layout.read_back.entities import RECORD_LAYERS, WIDEST_BULGE
 from layout.read_back.file import open_drawing
 from layout.read_back.limits import CENTRED_WITHIN_MM, FARTHEST_MM
@@ -34,20 +43,23 @@ _AFTER_THE_RIM = ("RIM", "LEADS")
 _WARNINGS = ("NOT GOOD TO CUT", "NOT FOR CUTTING")  # as they are lettered and stand in the head
 _APP_ID, _STRING = "DISCWRIGHT", 1000  # under which lettering carries its words; DXF reference: group of a string
 _NOT_PLAIN = 2 | 4 | 8 | 16 | 32 | 64  # DXF reference, group 70 of POLYLINE: fitted, splined, in space, a mesh
+_WIDEST_DEG = 720.0  # degrees; two turns either way, more is no angle a program writes
+_COMPENSATED = re.compile(r"compensated for a kerf of (\d+(?:\.\d+)?) mm already")  # in our heads' line on the kerf
 _FINGERPRINT = re.compile(r"[0-9a-f]{16}")
 _MOST_TITLE = 120  # characters; as long as a title of a document may be
 _BLANK, _SIDE, _KERF, _HITS = "blank: ", "drawn from the ", "outlines are ", "hits: "  # how lines of our heads begin
 _TAKE_OURS = "use disc.dxf as it was written"
 
 
-def read_as_drawn(dxf: bytes) -> DrawnDisc:
+def read_as_drawn(dxf: bytes, layers: Mapping[str, Layer] | None = None) -> DrawnDisc:
     """All that is cut or marked in a disc.dxf, as it stands there.
 
-    Read are polylines with their bulges, circles, points and lines of the model space, on layers of our own
-    names; the rest of the head tells whose disc it is. A head that another program has dropped leaves its words "".
+    Read are polylines with their bulges, circles, arcs, points and lines of the model space, on the layers of the
+    cutter; the rest of the head tells whose disc it is. A head that another program has dropped leaves its words "".
 
     Args:
         dxf: An ASCII DXF file in millimetres, its origin at the disc's centre.
+        layers: What the cutter calls our layers, where it has names of its own.
 
     Raises:
         DrawingReadError: No such file, a record, marked NOT GOOD TO CUT, damaged; a layer or an entity that is not
@@ -57,11 +69,12 @@ def read_as_drawn(dxf: bytes) -> DrawnDisc:
     with open_drawing(dxf) as (document, mended):
         if mended:
             raise DrawingReadError(f"drawing: the file is damaged, cuts may be missing; {_TAKE_OURS}")
-        entities = tuple(_entities(document))
+        entities = tuple(_entities(document, layers or {}))
         release = "R12" if document.dxfversion == DXF12 else "R2010"
     rim_mm = _rim_radius_mm(entities)
     _refuse_outside(entities, rim_mm)
     head = tuple(head_comments(dxf))
+    compensated = _COMPENSATED.search(_line(head, _KERF))
     fingerprint = _line(head, "fingerprint: ").removeprefix("fingerprint: ")
     return DrawnDisc(
         title=_line(head, "title: ").removeprefix("title: ")[:_MOST_TITLE],
@@ -72,6 +85,7 @@ def read_as_drawn(dxf: bytes) -> DrawnDisc:
         hits=_line(head, _HITS),
         digest=hashlib.sha256(dxf).hexdigest(),
         release=release,
+        kerf_taken_mm=float(compensated[1]) if compensated else 0.0,
         rim_diameter_mm=2 * rim_mm,
         lead_reach_mm=max(0.0, *(reach_mm(each) - rim_mm for each in entities)),
         entities=entities,
@@ -97,16 +111,17 @@ def _is_a_record(why: str) -> DrawingReadError:
     return DrawingReadError(f"drawing: this is a record, for reading, never for cutting ({why}); use disc.dxf")
 
 
-def _entities(document: Drawing) -> Iterator[DrawnEntity]:
-    ours = {name.casefold(): name for name in LAYER_COLOURS}
+def _entities(document: Drawing, layers: Mapping[str, Layer]) -> Iterator[DrawnEntity]:
+    ours = {layer_of(layers, name).name.casefold(): name for name in LAYER_COLOURS}
     rim_begun = False
     for entity in document.modelspace():
         name = str(entity.dxf.layer)
         layer = ours.get(name.casefold())
         if layer is None:
+            known = ", ".join(layer_of(layers, placed).name for placed in PLACED_LAYERS)
             raise DrawingReadError(
-                f"drawing: layer {name[:64]!r} is none of {', '.join(PLACED_LAYERS)}, which alone can be "
-                "placed; where a cutter gives layers names of its own, draw the disc with a cutter that keeps ours"
+                f"drawing: layer {name[:64]!r} is none of {known}, which alone can be placed; where the cutter gives "
+                "layers names of its own, state its layers in the job"
             )
         if layer in RECORD_LAYERS:
             raise _is_a_record(f"it has entities on {layer}")
@@ -122,17 +137,8 @@ def _drawn(layer: str, entity: DXFEntity) -> DrawnEntity:
     if not Vec3(entity.dxf.get("extrusion", (0, 0, 1))).isclose((0, 0, 1)):
         raise _stranger(layer, entity, "drawn on the back of the sheet or tilted")
     match entity:
-        case Arc():  # to the library, a kind of circle
-            raise _stranger(layer, entity, "of another kind")
         case Circle():
-            centre, radius_mm = entity.dxf.center, float(entity.dxf.radius)
-            if not 0 < radius_mm <= FARTHEST_MM:
-                raise DrawingReadError(
-                    f"drawing: layer {layer} has a circle of radius {radius_mm:g} mm, allowed are radii above 0 and up "
-                    f"to {FARTHEST_MM:g} mm; {_TAKE_OURS}"
-                )
-            [[x, y, _]] = _checked(layer, [(centre.x, centre.y, 0.0)]).tolist()
-            return DrawnCircle(layer=layer, centre_mm=frozen_floats([x, y]), radius_mm=radius_mm)
+            return _round(layer, entity)
         case Point():
             place = entity.dxf.location
             return DrawnPoint(layer=layer, at_mm=frozen_floats(_checked(layer, [(place.x, place.y, 0.0)])[0, :2]))
@@ -150,6 +156,27 @@ def _drawn(layer: str, entity: DXFEntity) -> DrawnEntity:
             vertices = [(place.x, place.y, bulge) for place, bulge in places]
             return _line_drawn(layer, entity, vertices, closed=bool(entity.is_closed))
     raise _stranger(layer, entity, "of another kind")
+
+
+def _round(layer: str, entity: Circle) -> DrawnCircle | DrawnArc:
+    """A circle, or what is to the library a kind of circle: an arc."""
+    centre, radius_mm = entity.dxf.center, float(entity.dxf.radius)
+    if not 0 < radius_mm <= FARTHEST_MM:
+        raise DrawingReadError(
+            f"drawing: layer {layer} has a circle of radius {radius_mm:g} mm, allowed are radii above 0 and up "
+            f"to {FARTHEST_MM:g} mm; {_TAKE_OURS}"
+        )
+    [[x, y, _]] = _checked(layer, [(centre.x, centre.y, 0.0)]).tolist()
+    centre_mm = frozen_floats([x, y])
+    if not isinstance(entity, Arc):
+        return DrawnCircle(layer=layer, centre_mm=centre_mm, radius_mm=radius_mm)
+    from_deg, to_deg = float(entity.dxf.start_angle), float(entity.dxf.end_angle)
+    if not max(abs(from_deg), abs(to_deg)) <= _WIDEST_DEG:
+        raise DrawingReadError(
+            f"drawing: layer {layer} has an arc from {from_deg:g} to {to_deg:g} degrees, allowed are angles within "
+            f"{_WIDEST_DEG:g}; {_TAKE_OURS}"
+        )
+    return DrawnArc(layer=layer, centre_mm=centre_mm, radius_mm=radius_mm, from_deg=from_deg, to_deg=to_deg)
 
 
 def _line_drawn(
@@ -180,7 +207,7 @@ def _words(entity: DXFEntity) -> str:
 def _stranger(layer: str, entity: DXFEntity, why: str) -> DrawingReadError:
     return DrawingReadError(
         f"drawing: layer {layer} has an entity of type {entity.dxftype()} that is {why}; placed are LWPOLYLINE, "
-        f"POLYLINE, CIRCLE, POINT and LINE, flat and seen from above; {_TAKE_OURS}"
+        f"POLYLINE, CIRCLE, ARC, POINT and LINE, flat and seen from above; {_TAKE_OURS}"
     )
 
 

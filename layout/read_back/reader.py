@@ -15,6 +15,7 @@ from layout.read_back.limits import FARTHEST_MM
 from layout.read_back.projections import Wanted, projections_of
 from layout.read_back.reading import Reading
 from layout.read_back.side import findings_on_the_side
+from layout.read_back.slugs import findings_on_bridges, with_slugs_joined
 from layout.read_back.whole_file import findings_on_the_file
 
 
@@ -45,7 +46,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     """
     turning, pattern = turning_of(movement), pattern_of(movement, cutter)
     as_drawn = read_drawing(dxf, cutter, farthest_mm=_farthest_mm(movement, pattern))
-    drawing = without_bridges(as_drawn, movement, cutter)
+    slugs = with_slugs_joined(without_bridges(as_drawn, movement, cutter), cutter)
+    drawing = slugs.drawing
     wanted = Wanted(cutter=cutter, turning=turning, pattern=pattern)
     found = projections_of(drawing, wanted)
     disc = Disc(
@@ -59,7 +61,8 @@ def read_back(dxf: bytes, movement: Movement, cutter: Cutter) -> Reading:
     of_the_file = findings_on_the_file(dxf, drawing, cutter)
     differs = compare_blank(drawing, movement, half_kerf_mm=wanted.half_kerf_mm)
     of_the_side = [] if found.shows_side else findings_on_the_side(drawing, found.edges, differs, wanted, movement)
-    return Reading(disc=disc, findings=(*of_the_file, *of_the_side, *found.findings, *differs))
+    of_bridges = findings_on_bridges(slugs, disc)
+    return Reading(disc=disc, findings=(*of_the_file, *of_the_side, *found.findings, *of_bridges, *differs))
 
 
 def _farthest_mm(movement: Movement, pattern: Pattern) -> float:

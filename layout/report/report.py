@@ -8,6 +8,7 @@ at its onset), the *bass* (lowest, and not highest) or *inner* (neither).
 from dataclasses import dataclass
 
 from layout.arrange.arrangement import LeftOutReason, Tried, Worth
+from layout.mechanics.depth import DepthBand
 from layout.mechanics.net_section import MetalLeft
 from layout.mechanics.starting import Starting
 from layout.mechanics.tolerances import PlaceError
@@ -180,6 +181,7 @@ class Report:
         load: The greatest load; None where there is none to tell.
         no_load_because: Why there is none; None where there is one.
         drive: What drives the disc, and how it turns.
+        depth: How deep the projections stand, and what flatness does to it; None for slots.
     """
 
     total: Tally
@@ -198,3 +200,4 @@ class Report:
     load: PeakLoad | None
     no_load_because: str | None
     drive: Driving
+    depth: DepthBand | None

@@ -4,7 +4,7 @@ import numpy as np
 
 from layout.arrange.arrangement import NO_NOTE, Arrangement
 from layout.documents.pitch import pitch_of
-from layout.mechanics.net_section import metal_left
+from layout.mechanics.depth import depth_band
 from layout.place.disc import Disc
 from layout.read.score import Score
 from layout.report.bars import worst_bars
@@ -44,13 +44,17 @@ def report_on(score: Score, arrangement: Arrangement, disc: Disc) -> Report:
         tried=arrangement.tried,
         worst_bars=worst_bars(score, arrangement, fates),
         tracks=timing_of(disc, arrangement),
-        metal_left=metal_left(
-            disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, disc.movement.disc.features
-        ),
+        metal_left=disc.metal_left,
         load=load,
         no_load_because=None if load else NO_STIFFNESS if disc.projection_count else NOTHING_PLUCKED,
         drive=driving_of(disc),
+        depth=depth_band(disc.movement, _bend_radius_mm(disc)),
     )
+
+
+def _bend_radius_mm(disc: Disc) -> float | None:
+    fold = disc.cutter.fold
+    return None if fold is None or disc.pattern.making != "fold" else fold.inside_radius_mm
 
 
 def _peak_load(arrangement: Arrangement) -> PeakLoad | None:

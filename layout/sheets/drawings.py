@@ -61,14 +61,26 @@ def _unknown(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> Iterator[Probl
 def _rims(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> Iterator[Problem]:
     for place, wanted in enumerate(job.discs):
         drawn = drawings.get(wanted.id)
-        if drawn is not None and abs(drawn.rim_diameter_mm - wanted.diameter_mm) > RIM_WITHIN_MM:
-            as_drawn = f" (compensated: the job must say {drawn.rim_diameter_mm:g})" if _is_compensated(drawn) else ""
+        if drawn is None:
+            continue
+        off_mm = min(abs(rim_mm - wanted.diameter_mm) for rim_mm in (drawn.rim_diameter_mm, drawn.nominal_diameter_mm))
+        if off_mm > RIM_WITHIN_MM:
+            nominal = f" (compensated, {drawn.nominal_diameter_mm:.3f} nominal)" if drawn.kerf_taken_mm else ""
             message = (
-                f"the rim in the drawing of {wanted.id} is {drawn.rim_diameter_mm:.3f} mm in diameter{as_drawn}, the "
+                f"the rim in the drawing of {wanted.id} is {drawn.rim_diameter_mm:.3f} mm in diameter{nominal}, the "
                 f"job says {wanted.diameter_mm:g}; allowed are {RIM_WITHIN_MM:g} mm between them: correct the job, or "
                 "give the drawing of this disc"
             )
             yield Problem(pointer=f"/discs/{place}/diameter_mm", message=message)
+
+
+def diameters_mm(job: SheetJob, drawings: Mapping[str, DrawnDisc]) -> list[float]:
+    """What each disc of a job takes up: its diameter, or its rim as it is drawn where that is larger."""
+    drawn_mm = [drawings[each.id].rim_diameter_mm if each.id in drawings else 0.0 for each in job.discs]
+    return [
+        rim_mm if rim_mm > each.diameter_mm + _ROUNDED_MM else each.diameter_mm
+        for each, rim_mm in zip(job.discs, drawn_mm, strict=True)
+    ]
 
 
 def _unlike(drawings: Mapping[str, DrawnDisc]) -> Iterator[Problem]:

@@ -4,8 +4,10 @@ Coordinates are each sheet's own, in millimetres: the origin of a rectangle is i
 corner, an outline keeps the frame it was given in.
 """
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
+from layout.documents.cutter import Layer
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.drawn import DrawnDisc
 
@@ -23,6 +25,21 @@ class Piece:
     outline_mm: FloatArray
     openings_mm: tuple[FloatArray, ...]
     area_mm2: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Label:
+    """A line of single-stroke letters.
+
+    Attributes:
+        text: In printable ASCII.
+        at_mm: Shape (2,). The middle of its base line.
+        height_mm: Of capitals.
+    """
+
+    text: str
+    at_mm: FloatArray
+    height_mm: float
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -62,6 +79,8 @@ class Sheet:
         centres_mm: Shape (n, 2). Disc centres in cutting order.
         kind: Shape (n,). Index into the plan's kinds.
         radius_mm: Shape (n,).
+        number: Shape (n,). Counts the discs of one kind over all sheets, from 1.
+        labels: Which disc each is, lettered beside it; None where nothing is lettered or no letters find room.
         used_ratio: Area of the discs, as a share of the piece.
         travel_mm: Between the centres in cutting order, in straight lines.
         cut_from: The end at which cutting begins: "left", "right", "bottom" or "top".
@@ -78,6 +97,8 @@ class Sheet:
     centres_mm: FloatArray
     kind: IntArray
     radius_mm: FloatArray
+    number: IntArray
+    labels: tuple[Label | None, ...]
     used_ratio: float
     travel_mm: float
     cut_from: str
@@ -94,6 +115,7 @@ class SheetPlan:
         title: Of the job.
         fingerprint: Of the job, its drawings and the engine; the same always give the same.
         gap_mm: Least distance of two rims.
+        layers: What the cutter calls our layers, where it has names of its own.
         kinds: What was asked for, in the job's order.
         sheets: The sheets that discs lie on, in the order they are used.
         untouched_count: Sheets of the job that are not needed, or hold no disc.
@@ -102,6 +124,7 @@ class SheetPlan:
     title: str
     fingerprint: str
     gap_mm: float
+    layers: Mapping[str, Layer]
     kinds: tuple[DiscKind, ...]
     sheets: tuple[Sheet, ...]
     untouched_count: int

@@ -31,13 +31,14 @@ def rows_of(movement: Movement, cutter: Cutter) -> tuple[Row, ...]:
     """The rows of the piece, the outermost first: its ladders, what it is, and what its line says.
 
     The longest ladders stand outermost, where a small sector holds most. A ladder of which no step can be
-    cut has no rungs.
+    cut has no rungs. Where the cutter wants no labels, it is not lettered with what it is; STOP and the numbers of
+    the steps stay, since the piece is turned up to the one and measured by the others.
 
     A laser that folds gets kerf, tab width, depth and web; one that cuts slots kerf, slot width, slot length
     and web; a press the web of the tool that makes this movement's projections, since its tool sets
     everything else.
     """
-    lines = (*wording.title_lines(movement, cutter), wording.STOP)
+    lines = (*(wording.title_lines(movement, cutter) if cutter.labels else ()), wording.STOP)
     said = tuple(Row(ladder=None, rungs=(letters_of(line),)) for line in lines)
     web = _web(movement, cutter)
     if cutter.kind == "punch-press":

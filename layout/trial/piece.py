@@ -1,9 +1,10 @@
 """What a trial piece is: a drawing to cut, and what to measure on it."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
-from layout.cut.plan import Drawing
+from layout.cut.plan import Drawing, Points
+from layout.documents.movement import Feature
 from layout.mechanics.arrays import FloatArray
 
 
@@ -69,9 +70,11 @@ class TrialPiece:
         cutter_id: The cutter that makes it.
         material: Of the sheet.
         thickness_mm: Of the sheet.
+        disc_diameter_mm: Of the disc it is a sector of.
         drawn_from: The side the drawing shows.
         edges: What the drawing's outlines are: finished edges, or the beam's own lines.
-        drawing: What is cut and marked, in cutting order, the outline last.
+        drawing: What is cut and marked, the outline last.
+        hub: Rows of holes and slots of the disc that the piece has too.
         web_mm: Metal left at least between everything cut, but for the web ladder's own steps.
         ladders: What to measure, in the order of the sheet.
         hits: Where a press strikes, in order; None on a laser.
@@ -84,11 +87,29 @@ class TrialPiece:
     cutter_id: str
     material: str
     thickness_mm: float
+    disc_diameter_mm: float
     drawn_from: Literal["label-side", "star-side"]
     edges: str
     drawing: Drawing
+    hub: tuple[Feature, ...]
     web_mm: float
     ladders: tuple[Ladder, ...]
     hits: Hits | None
     not_tried: tuple[NotTried, ...]
     cautions: tuple[str, ...]
+
+    def as_cut(self, drawing: Drawing, *, held: bool) -> "TrialPiece":
+        """The piece with its drawing as it is cut, and its hits in that order.
+
+        Args:
+            drawing: As it is cut.
+            held: Whether it has the bridges that its cutter asks for.
+        """
+        struck_mm = [entity.points_mm for entity in drawing.entities if isinstance(entity, Points)]
+        why = "its arcs have no room for them; hold the piece down, or it may tip when it is cut free"
+        return replace(
+            self,
+            drawing=drawing,
+            hits=self.hits if self.hits is None or not struck_mm else replace(self.hits, at_mm=struck_mm[0]),
+            not_tried=self.not_tried if held else (*self.not_tried, NotTried(what="bridges", why=why)),
+        )

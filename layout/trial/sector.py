@@ -7,12 +7,10 @@ import numpy as np
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layout.cut.plan import Circles, Entity, Outlines
-from layout.documents.cutter import SAME_PLACE_MM
+from layout.cut.plan import Outlines
 from layout.documents.movement import Feature, Movement
-from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.arrays import frozen_floats
 from layout.mechanics.blank import feature_core_mm
-from layout.mechanics.projection import HALF_CIRCLE_BULGE
 
 # mm; common practice: corners of sheet that is handled are rounded, 3 mm is the usual least.
 CORNER_MM = 3.0
@@ -20,7 +18,6 @@ CORNER_SHARE = 0.05  # of the disc's radius, where that is less
 HUB_MARGIN_MM = 3.0  # mm of metal round the hub's holes and clamp; common practice: six times a sheet of 0.5 mm
 WIDEST_ARC_RAD = math.pi / 2  # rad; a bulge of nearly a whole circle is ill-conditioned, tan(θ/4) runs to infinity
 _QUARTER_PIECES = 64  # of a circle's quarter, where a polygon stands for the metal
-_DIGITS = -round(math.log10(SAME_PLACE_MM))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -59,20 +56,6 @@ def hub_radius_mm(movement: Movement, features: tuple[Feature, ...], within_mm: 
 def feature_metal_mm(feature: Feature, mirror: int) -> list[tuple[BaseGeometry, float]]:
     """Each hole, slot or notch of a row, as drawn: a core and the radius it is grown by."""
     return [feature_core_mm(feature, mirror * math.radians(angle_deg)) for angle_deg in feature.angles_deg]
-
-
-def hub_holes(movement: Movement, features: tuple[Feature, ...], mirror: int) -> tuple[Entity, ...]:
-    """The features' holes and slots from the innermost out, then the centre hole; each is cut once."""
-    seen: set[tuple[float, ...]] = set()
-    cut: list[Entity] = []
-    for feature in sorted(features, key=lambda feature: feature.radius_mm):
-        for core, round_mm in feature_metal_mm(feature, mirror):
-            ends_mm = np.array(core.coords)
-            key = (round_mm, *np.round(np.sort(ends_mm, axis=0), _DIGITS).ravel().tolist())
-            if key not in seen:
-                seen.add(key)
-                cut.append(_circle(ends_mm, round_mm) if len(ends_mm) == 1 else _obround(ends_mm, round_mm))
-    return (*cut, _circle(np.zeros((1, 2)), movement.disc.centre_hole_mm / 2))
 
 
 def outline(sector: Sector) -> Outlines:
@@ -115,19 +98,3 @@ def _arc(radius_mm: float, from_rad: float, to_rad: float) -> list[tuple[float, 
     pieces = max(math.ceil((to_rad - from_rad) / WIDEST_ARC_RAD), 1)
     step_rad = (to_rad - from_rad) / pieces
     return [(radius_mm, from_rad + place * step_rad, math.tan(step_rad / 4)) for place in range(pieces)]
-
-
-def _circle(centre_mm: FloatArray, radius_mm: float) -> Circles:
-    return Circles(layer="HOLES", centres_mm=frozen_floats(centre_mm), radius_mm=frozen_floats([radius_mm]))
-
-
-def _obround(ends_mm: FloatArray, round_mm: float) -> Outlines:
-    along = (ends_mm[1] - ends_mm[0]) / np.hypot(*(ends_mm[1] - ends_mm[0]))
-    right_mm = np.array([along[1], -along[0]]) * round_mm
-    corners = [ends_mm[0] + right_mm, ends_mm[1] + right_mm, ends_mm[1] - right_mm, ends_mm[0] - right_mm]
-    return Outlines(
-        layer="HOLES",
-        points_mm=frozen_floats(np.array([corners])),
-        bulges=frozen_floats([0.0, HALF_CIRCLE_BULGE, 0.0, HALF_CIRCLE_BULGE]),
-        closed=True,
-    )

@@ -16,7 +16,6 @@ from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Pattern, Shape, fitting_tool, pattern_of
 from layout.mechanics.spacing import core_geometries
 from layout.trial import wording
-from layout.trial.beam import along_the_beam
 from layout.trial.ladders import rows_of, tool_ladders, track_ladder
 from layout.trial.lettering import LETTER_HEIGHT_MM, standing_at, text_strokes_mm
 from layout.trial.piece import Hits, Ladder, NotTried, TrialPiece
@@ -26,7 +25,6 @@ from layout.trial.sector import (
     fan_mm,
     feature_metal_mm,
     hub_features,
-    hub_holes,
     hub_radius_mm,
     outline,
 )
@@ -45,7 +43,8 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
 
     It is a sector of the movement's own disc, joined to a hub with the centre hole and the holes that
     drive it, so that it goes on the movement as a disc does. It has one projection on each track, in the
-    disc's own pattern, and beside them ladders of steps. What the sector cannot have is told as not tried.
+    disc's own pattern, and beside them ladders of steps. What the sector cannot have is told as not tried. Its drawing
+    shows it finished, ladder by ladder, without the holes: the cut stage puts them in, and all in cutting order.
 
     Raises:
         DocumentError: The cutter cannot make the movement's projections, so there is nothing to try; or the tracks
@@ -68,23 +67,23 @@ def trial_piece(movement: Movement, cutter: Cutter) -> TrialPiece:
     drawn = _Drawn(sector=sector, turn=turn, whole_rad=places.whole_rad)
     hits_mm, cut = _cut(drawn, movement, pattern, tracks, places)
     marks = _marks(drawn, movement, tracks, places)
-    holes = hub_holes(movement, features, mirror)
-    # As on a disc: lances after the holes, so that none is struck beside formed metal (common practice).
-    inner = (*holes, *cut) if pattern.making == "lance" else (*cut, *holes)
-    cut_entities = [along_the_beam(entity, cutter) for entity in (*inner, outline(sector))]
     return TrialPiece(
         movement_id=movement.id,
         movement_revision=movement.revision,
         cutter_id=cutter.id,
         material=movement.disc.material,
         thickness_mm=movement.disc.thickness_mm,
+        disc_diameter_mm=movement.disc.outer_diameter_mm,
         drawn_from=cutter.drawn_from,
         edges=wording.edge_words(cutter),
-        drawing=Drawing(entities=(*marks, *cut_entities), comments=wording.head_lines(movement, cutter, pattern.tool)),
+        drawing=Drawing(
+            entities=(*marks, *cut, outline(sector)), comments=wording.head_lines(movement, cutter, pattern.tool)
+        ),
+        hub=features,
         web_mm=places.web_mm,
         ladders=_told(movement, cutter, rows, places, tracks),
         hits=None if hits_mm is None else Hits(tool=pattern.tool, at_mm=hits_mm),
-        not_tried=(*off_disc, *_cannot_be_cut(impossible), *_rows_left_out(places), *absent),
+        not_tried=(*off_disc, *_cannot_be_cut(impossible), *_rows_left_out(places), *absent, *_unlettered(cutter)),
         cautions=wording.cautions(movement, cutter),
     )
 
@@ -275,6 +274,13 @@ def _told(
 def _cannot_be_cut(names: Sequence[str]) -> tuple[NotTried, ...]:
     why = "no step of it can be cut: the kerf is wider, or nothing is left of a tab beside its bend"
     return tuple(NotTried(what=f"ladder {name}", why=why) for name in names)
+
+
+def _unlettered(cutter: Cutter) -> tuple[NotTried, ...]:
+    if cutter.labels:
+        return ()
+    why = "the cutter states labels false; STOP and the numbers stay, by which the piece is turned and measured"
+    return (NotTried(what="lettering of what the piece is", why=why),)
 
 
 def _rows_left_out(places: Spread) -> tuple[NotTried, ...]:

@@ -6,6 +6,7 @@ from typing import Any
 from layout.arrange.arrangement import Tried, Worth
 from layout.documents.making import NetSection
 from layout.documents.movement import Movement
+from layout.mechanics.depth import DepthBand
 from layout.mechanics.net_section import MetalLeft
 from layout.mechanics.starting import Starting
 from layout.mechanics.torque import TurnTorque
@@ -18,7 +19,6 @@ from layout.write.numbers import DECIMALS_DEG, DECIMALS_MM, rounded
 
 FORMAT = "discwright-report/1"
 CURVE_DECIMALS = 6  # of a second and of a newton millimetre: finer than any plot
-DECIMALS_SHARE = 9  # of a share: under a nanometre of any disc
 DECIMALS_SHARE = 9  # of a share: under a nanometre of any disc
 
 Record = dict[str, Any]  # JSON: what it holds is said by report_record
@@ -44,7 +44,8 @@ def report_record(laid_out: LaidOut) -> Record:
     none, and `no_load_because` then says why. Nudges are told to a nanosecond, the torque over the turn to
     a microsecond and as finely, all else unrounded. In `drive` what is not known is null, and `not_stated`
     names the fields of the movement it would need. `net_section` is null where there are no openings; a least
-    share is null where the cutter states none. Parts of a track's timing are null where they are not stated.
+    share is null where the cutter states none. `depth` is null for slots, and its limit for measured
+    arcs. Parts of a track's timing are null where they are not stated.
 
     Args:
         laid_out: The layout.
@@ -78,6 +79,7 @@ def report_record(laid_out: LaidOut) -> Record:
         "no_load_because": report.no_load_because,
         "drive": _drive(report.drive, movement),
         "net_section": None if left is None else _net_section(left, laid_out.disc.cutter.net_section),
+        "depth": None if report.depth is None else _depth(report.depth),
         "tracks": [_track(track) for track in report.tracks],
     }
 
@@ -188,6 +190,18 @@ def _winding(run: WindingRun, *, upper_bound: bool) -> Record:
         "winding_slows_share": run.winding_slows_ratio,
         "first_revolution_s": run.first_revolution_s,
         "last_revolution_s": run.last_revolution_s,
+    }
+
+
+def _depth(depth: DepthBand) -> Record:
+    return {
+        "depth_mm": depth.depth_mm,
+        "plus_minus_mm": depth.plus_minus_mm,
+        "flatness_mm": depth.flatness_mm,
+        "least_mm": round(depth.least_mm, DECIMALS_MM),
+        "most_mm": round(depth.most_mm, DECIMALS_MM),
+        "flatness_limit_mm": None if depth.flatness_limit_mm is None else round(depth.flatness_limit_mm, DECIMALS_MM),
+        "ended_by": depth.ended_by,
     }
 
 

@@ -3,20 +3,23 @@
 from collections.abc import Iterator
 
 import numpy as np
+from ezdxf.document import Drawing
 from ezdxf.layouts.layout import Modelspace
 
-from layout.documents.cutter import LAYER_COLOURS
+from layout.documents.cutter import LAYER_COLOURS, layer_of
+from layout.documents.sheets import CLAMPS_LAYER, STOCK_LAYER
 from layout.mechanics.arrays import FloatArray
-from layout.mechanics.drawn import DrawnCircle, DrawnDisc, DrawnEntity, DrawnLine, DrawnPoint
-from layout.sheets.plan import DiscKind, Sheet, SheetPlan
+from layout.mechanics.drawn import DrawnArc, DrawnCircle, DrawnDisc, DrawnEntity, DrawnLine, DrawnPoint
+from layout.mechanics.lettering import strokes_mm
+from layout.sheets.plan import DiscKind, Label, Sheet, SheetPlan
 from layout.write.dxf import APP_ID, STRING, UNIT_SAID, add_polyline
 from layout.write.dxf_document import Release, bytes_of, new_document
 from layout.write.numbers import DECIMALS_BULGE, rounded
 from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
-RIM, STOCK, CLAMPS = "RIM", "STOCK", "CLAMPS"
-# Colour indices (AutoCAD Color Index of the DXF reference); those of stock and clamps are none of what is cut.
-_COLOURS = {STOCK: 7, CLAMPS: 252} | LAYER_COLOURS
+RIM, MARKS = "RIM", "MARKS"
+# Colour indices (AutoCAD Color Index of the DXF reference), none of what is cut.
+_COLOURS = {STOCK_LAYER: 7, CLAMPS_LAYER: 252}
 
 
 def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
@@ -24,7 +27,8 @@ def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
 
     Discs stand in cutting order, each whole: all of its drawing in the order it is drawn in, moved to its place and
     neither turned nor mirrored, so that every vertex stays exact, folds keep their way to the rolling of the sheet,
-    and marks read as on the disc alone. A disc without a drawing is a circle on the layer RIM. The sheet with its
+    and marks read as on the disc alone. A disc without a drawing is a circle on the layer RIM. Before each stands its
+    label on MARKS, where it has one. Layers have the names and colours of the job. The sheet with its
     openings stands on STOCK, zones kept free on CLAMPS: neither is ever cut, and the head of the file says so. Only
     layers that occur are there. The release is R2010, or R12 where a drawing on the sheet is of that release.
 
@@ -39,18 +43,28 @@ def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
     kinds = [plan.kinds[kind] for kind in dict.fromkeys(sheet.kind.tolist())]
     release = _release(kinds)
     document = new_document(rounded(np.array([corners.min(axis=0), corners.max(axis=0)])), release)
-    for layer in (STOCK, *([CLAMPS] if zones else []), *_layers_of(kinds)):
-        document.layers.add(layer, color=_COLOURS[layer])
-    if any(isinstance(each, DrawnLine) and each.words for drawn in _drawings(kinds) for each in drawn.entities):
+    _add_layers(document, plan, [*_uncut(sheet), *_layers_of(kinds, sheet)])
+    lettered = any(isinstance(each, DrawnLine) and each.words for drawn in _drawings(kinds) for each in drawn.entities)
+    if lettered or any(sheet.labels):
         document.appids.add(APP_ID)
     space = document.modelspace()
-    for layer, outlines in ((STOCK, rings), (CLAMPS, zones)):
+    for layer, outlines in ((STOCK_LAYER, rings), (CLAMPS_LAYER, zones)):
         for outline in outlines:
             straight = [(x, y, 0.0) for x, y in rounded(outline).tolist()]
             add_polyline(space, straight, {"layer": layer}, closed=True)
-    placed = zip(sheet.kind.tolist(), rounded(sheet.centres_mm), rounded(sheet.radius_mm).tolist(), strict=True)
-    for kind, centre_mm, radius_mm in placed:
-        _add_disc(space, plan.kinds[kind].drawing, centre_mm, radius_mm)
+    names = {ours: layer_of(plan.layers, ours).name for ours in LAYER_COLOURS}
+    placed = zip(
+        sheet.kind.tolist(), rounded(sheet.centres_mm), rounded(sheet.radius_mm).tolist(), sheet.labels, strict=True
+    )
+    for kind, centre_mm, radius_mm, label in placed:
+        if label is not None:
+            _add_label(space, label, {"layer": names[MARKS]})
+        drawn = plan.kinds[kind].drawing
+        if drawn is None:
+            space.add_circle(centre_mm, radius_mm, dxfattribs={"layer": names[RIM]})
+        else:
+            for entity in drawn.entities:
+                _add_moved(space, entity, centre_mm, {"layer": names[entity.layer]})
     return bytes_of(document, (*_comments(plan, sheet, number), *_of_the_drawings(kinds), *UNIT_SAID.get(release, ())))
 
 
@@ -62,25 +76,44 @@ def _release(kinds: list[DiscKind]) -> Release:
     return "R12" if any(drawn.release == "R12" for drawn in _drawings(kinds)) else "R2010"
 
 
-def _layers_of(kinds: list[DiscKind]) -> list[str]:
+def _uncut(sheet: Sheet) -> list[str]:
+    return [STOCK_LAYER, *([CLAMPS_LAYER] if len(sheet.clamps_mm) else [])]
+
+
+def _layers_of(kinds: list[DiscKind], sheet: Sheet) -> list[str]:
     """Our layers that the discs use, in the order of the table."""
     used = {entity.layer for drawn in _drawings(kinds) for entity in drawn.entities} | {RIM}
+    if any(sheet.labels):
+        used.add(MARKS)
     return [layer for layer in LAYER_COLOURS if layer in used]
 
 
-def _add_disc(space: Modelspace, drawn: DrawnDisc | None, centre_mm: FloatArray, radius_mm: float) -> None:
-    if drawn is None:
-        space.add_circle(centre_mm, radius_mm, dxfattribs={"layer": RIM})
-        return
-    for entity in drawn.entities:
-        _add_moved(space, entity, centre_mm)
+def _add_layers(document: Drawing, plan: SheetPlan, layers: list[str]) -> None:
+    for ours in layers:
+        name, colour = ours, _COLOURS.get(ours)
+        if colour is None:
+            wanted = layer_of(plan.layers, ours)
+            name, colour = wanted.name, wanted.colour
+        if name in document.layers:  # layer 0, the only one that stands already
+            document.layers.get(name).color = colour
+        else:
+            document.layers.add(name, color=colour)
 
 
-def _add_moved(space: Modelspace, entity: DrawnEntity, by_mm: FloatArray) -> None:
-    on_layer = {"layer": entity.layer}
+def _add_label(space: Modelspace, label: Label, on_layer: dict[str, str]) -> None:
+    strokes = [rounded(stroke + label.at_mm).tolist() for stroke in strokes_mm(label.text, label.height_mm)]
+    lines = [add_polyline(space, [(x, y, 0.0) for x, y in stroke], on_layer, closed=False) for stroke in strokes]
+    for first in lines[:1]:
+        first.set_xdata(APP_ID, [(STRING, dxf_text(label.text, MOST_DXF_STRING))])
+
+
+def _add_moved(space: Modelspace, entity: DrawnEntity, by_mm: FloatArray, on_layer: dict[str, str]) -> None:
     match entity:
         case DrawnCircle():
             space.add_circle(rounded(entity.centre_mm + by_mm), entity.radius_mm, dxfattribs=on_layer)
+        case DrawnArc():
+            centre, ends_deg = rounded(entity.centre_mm + by_mm), (entity.from_deg, entity.to_deg)
+            space.add_arc(centre, entity.radius_mm, *ends_deg, dxfattribs=on_layer)
         case DrawnPoint():
             space.add_point(rounded(entity.at_mm + by_mm), dxfattribs=on_layer)
         case DrawnLine():
@@ -100,11 +133,13 @@ def _around(zone: FloatArray) -> FloatArray:
 def _comments(plan: SheetPlan, sheet: Sheet, number: int) -> tuple[str, ...]:
     lot = f", lot {sheet.lot}" if sheet.lot else ""
     drawn = any(plan.kinds[kind].drawing is not None for kind in sheet.kind.tolist())
+    names = {ours: layer_of(plan.layers, ours).name for ours in (RIM, MARKS)}
+    beside = (f"Letters on {names[MARKS]} beside the discs say which is which: id and number, as in parts.csv.",)
     what = (
         "Cut in the order of the file, disc by disc: each is marked, cut inside and cut free before the next. "
-        "MARKS are marked and never cut through."
+        f"{names[MARKS]} are marked and never cut through."
         if drawn
-        else "Cut RIM alone, in the order of the file."
+        else f"Cut {names[RIM]} alone, in the order of the file."
     )
     return (
         f"{plan.title}: sheet {number} of {len(plan.sheets)}, from {sheet.stock}{lot}; {len(sheet.kind)} discs; "
@@ -112,6 +147,7 @@ def _comments(plan: SheetPlan, sheet: Sheet, number: int) -> tuple[str, ...]:
         f"{what} STOCK is the sheet's own edge and CLAMPS are zones kept free: never cut them.",
         f"Cutting begins at the {sheet.cut_from} and goes across the sheet in strips, so what is not cut yet "
         "stays in one piece. Discs that are cut free may tip: keep to the rules of the machine and the shop.",
+        *(beside if any(sheet.labels) else ()),
         f"job {plan.fingerprint}",
     )
 

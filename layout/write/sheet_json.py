@@ -27,8 +27,10 @@ def sheets_record(plan: SheetPlan) -> Record:
     """The plan in plain dictionaries and lists, in the order it is written.
 
     Discs stand in cutting order. The outline and openings of a remnant can stand in the stock of another job as
-    they are. `drawing` is what the head of a disc's drawing tells, "" where it does not; null for a
-    plain circle. Lengths are in millimetres to a nanometre.
+    they are. The `number` of a disc counts those of its kind over all sheets; its `label` is what is lettered beside
+    it, null where nothing is or no letters find room; its `diameter_mm` is what it takes up. `drawing` is what the
+    head of a disc's drawing tells, "" where it does not; null for a plain circle. Lengths are in millimetres to a
+    nanometre.
 
     Args:
         plan: The plan.
@@ -61,7 +63,12 @@ def sheets_record(plan: SheetPlan) -> Record:
 
 def _sheet(plan: SheetPlan, sheet: Sheet, number: int) -> Record:
     on_sheet = zip(
-        sheet.kind.tolist(), rounded(sheet.centres_mm).tolist(), rounded(2 * sheet.radius_mm).tolist(), strict=True
+        sheet.kind.tolist(),
+        rounded(sheet.centres_mm).tolist(),
+        rounded(2 * sheet.radius_mm).tolist(),
+        sheet.number.tolist(),
+        sheet.labels,
+        strict=True,
     )
     return {
         "sheet": number,
@@ -77,8 +84,15 @@ def _sheet(plan: SheetPlan, sheet: Sheet, number: int) -> Record:
         "strip_mm": sheet.strip_mm,
         "travel_mm": round(sheet.travel_mm, _DECIMALS_AREA),
         "discs": [
-            {"disc": plan.kinds[kind].id, "x_mm": x_mm, "y_mm": y_mm, "diameter_mm": diameter_mm}
-            for kind, (x_mm, y_mm), diameter_mm in on_sheet
+            {
+                "disc": plan.kinds[kind].id,
+                "x_mm": x_mm,
+                "y_mm": y_mm,
+                "diameter_mm": diameter_mm,
+                "number": number_of_kind,
+                "label": None if label is None else label.text,
+            }
+            for kind, (x_mm, y_mm), diameter_mm, number_of_kind, label in on_sheet
         ],
         "remnants": [_piece(remnant) for remnant in sheet.remnants],
     }

@@ -2,7 +2,6 @@
 
 import csv
 import io
-from collections import Counter
 
 from layout.sheets.plan import SheetPlan
 from layout.write.numbers import number as plain
@@ -23,11 +22,15 @@ def write_parts(plan: SheetPlan) -> bytes:
     text = io.StringIO(newline="")
     rows = csv.writer(text, lineterminator="\r\n")
     rows.writerow(COLUMNS)
-    seen: Counter[int] = Counter()
     for place, sheet in enumerate(plan.sheets, start=1):
-        on_sheet = zip(sheet.kind.tolist(), sheet.centres_mm.tolist(), sheet.radius_mm.tolist(), strict=True)
-        for sequence, (kind, (x_mm, y_mm), radius_mm) in enumerate(on_sheet, start=1):
-            seen[kind] += 1
+        on_sheet = zip(
+            sheet.kind.tolist(),
+            sheet.centres_mm.tolist(),
+            sheet.radius_mm.tolist(),
+            sheet.number.tolist(),
+            strict=True,
+        )
+        for sequence, (kind, (x_mm, y_mm), radius_mm, count) in enumerate(on_sheet, start=1):
             where = (plain(x_mm), plain(y_mm), plain(2 * radius_mm))
-            rows.writerow([place, sheet.stock, sheet.lot, sequence, plan.kinds[kind].id, seen[kind], *where])
+            rows.writerow([place, sheet.stock, sheet.lot, sequence, plan.kinds[kind].id, count, *where])
     return text.getvalue().encode("ascii")

@@ -7,11 +7,11 @@ from svgwrite.masking import ClipPath
 from svgwrite.path import Path
 from svgwrite.shapes import Circle
 
-from layout.cut.plan import CutPlan, Entity, LayerName
+from layout.cut.plan import CutPlan, Entity, LayerName, Outlines
 from layout.mechanics.arrays import FloatArray
 from layout.place.disc import Disc
 from layout.write.svg_page import Page, short
-from layout.write.svg_paths import circles, joined_data, lines_data, path_data
+from layout.write.svg_paths import area_data, circles, lines_data, path_data
 from layout.write.svg_style import BLACK, EMPHASIS_WIDTH, LAYER_STYLES, OVER_EDGES
 
 _FROM_RECORD = ("AFTER_FORMING", "FOLDS", "TRACKS")  # all else is shown as it is cut
@@ -43,12 +43,13 @@ def layer_groups(plan: CutPlan, page: Page) -> tuple[list[Group], list[Group]]:
         for entity in drawing.entities:
             if (entity.layer in _FROM_RECORD) is wanted:
                 drawn.setdefault(entity.layer, []).append(entity)
-    groups = {layer: _layer_group(layer, drawn[layer], page) for layer in LAYER_STYLES if layer in drawn}
+    groups = {layer: layer_group(layer, drawn[layer], page) for layer in LAYER_STYLES if layer in drawn}
     above = [groups.pop(layer) for layer in OVER_EDGES if layer in groups]
     return list(groups.values()), above
 
 
-def _layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
+def layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
+    """The group of one layer, named as it in small letters; empty but for its title without entities."""
     style = LAYER_STYLES[layer]
     group = Group(
         id=layer.lower(),
@@ -62,9 +63,9 @@ def _layer_group(layer: LayerName, entities: list[Entity], page: Page) -> Group:
     )
     group.elements.append(Title(style.title))
     data = path_data(entities)
-    if data and layer == "RIM" and not data.endswith("Z"):
-        # Bridges leave the rim open: the sheet is what all its lines bound, and no line bounds anything alone.
-        group.add(Path(d=joined_data(data), stroke="none", debug=False))
+    if style.fill != "none" and any(isinstance(each, Outlines) and not each.closed for each in entities):
+        # Bridges leave outlines open: filled is what lines bound together, drawn are the lines.
+        group.add(Path(d=area_data(entities), stroke="none", debug=False))
         group.add(Path(d=data, fill="none", debug=False))
     elif data:
         group.add(Path(d=data, debug=False))

@@ -1,5 +1,6 @@
 """Entities of a drawing as SVG path data and circles, in the picture's own coordinates (x, −y)."""
 
+import math
 from collections.abc import Iterator
 
 import numpy as np
@@ -26,8 +27,32 @@ def path_data(entities: list[Entity]) -> str:
     return "".join(parts)
 
 
-def joined_data(data: str) -> str:
-    """Path data of open lines that go round in their order, as one closed outline: what they bound together."""
+def area_data(entities: list[Entity]) -> str:
+    """SVG path data of what the outlines of a layer bound: a closed one alone, open lines with those that follow.
+
+    Bridges leave an outline open, and no line bounds anything alone. After each line its outline goes on with the next
+    one, or is round where that begins farther off than its own first line.
+    """
+    parts: list[str] = []
+    lines: list[Outlines] = []
+    outlines = [entity for entity in entities if isinstance(entity, Outlines)]
+    for entity, following in zip(outlines, [*outlines[1:], None], strict=True):
+        if entity.closed:
+            parts += _outlines(entity)
+            continue
+        lines.append(entity)
+        round_mm = math.dist(entity.points_mm[-1, -1], lines[0].points_mm[0, 0])
+        if (
+            following is None
+            or following.closed
+            or round_mm <= math.dist(entity.points_mm[-1, -1], following.points_mm[0, 0])
+        ):
+            parts.append(_joined_data("".join(piece for line in lines for piece in _outlines(line))))
+            lines = []
+    return "".join(parts)
+
+
+def _joined_data(data: str) -> str:
     first, *others = data.split("M")[1:]
     return "M" + "L".join([first, *others]) + "Z"
 

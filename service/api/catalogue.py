@@ -15,10 +15,10 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import document_response, json_bytes, json_response
 from service.api.asking import asker_or_none, needs, open_and_more_with
+from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.models.documents import DocumentQuery, DocumentsQuery
 from service.api.operations import catalogue
-from service.api.posted import body_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
 from service.catalogue import cutter_told, document_told, movement_told

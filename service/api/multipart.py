@@ -4,12 +4,17 @@ The form parser of the web library turns parts without a file name into text, wh
 survive; so its decoder is driven here, and a part counts the same with a file name or without.
 """
 
+import re
 from collections.abc import Iterator
 
 from werkzeug.exceptions import RequestEntityTooLarge
 from werkzeug.sansio.multipart import Data, Epilogue, Event, Field, File, MultipartDecoder, NeedData
 
 from service.api.problems import ProblemError
+
+ID = "ID"  # at the end of the name of a part, for any id of a document
+_AN_ID = re.compile(r"[a-z][a-z0-9-]{0,63}")  # as the documents have them
+_SHOWN_CHARACTERS = 80  # of a name that is none, so that the answer stays readable
 
 
 def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_parts: int) -> dict[str, bytes]:
@@ -18,7 +23,7 @@ def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_
     Args:
         body: The request's whole body.
         boundary: Of the header Content-Type; None where it states none.
-        known: Names that parts may have.
+        known: Names that parts may have; one that ends in ID, such as drawing-ID, stands for those with an id there.
         most_parts: How many parts the body may have.
 
     Raises:
@@ -32,14 +37,25 @@ def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_
     for event in _events(decoder, body):
         if isinstance(event, Field | File):
             name = event.name
-            if name not in known:
-                raise _invalid(name, f"there is no part called {name!r}; the parts are {', '.join(known)}")
+            if name is None:  # whatever the library's types say
+                raise _unreadable("a part lacks its name")
+            if not any(_is_called(name, listed) for listed in known):
+                shown = name[:_SHOWN_CHARACTERS]
+                raise _invalid(shown, f"there is no part called {shown!r}; the parts are {', '.join(known)}")
             if name in parts:
                 raise _invalid(name, f"the part {name} comes twice; send it once")
             parts[name] = bytearray()
         elif isinstance(event, Data):
             parts[name] += event.data
     return {name: bytes(content) for name, content in parts.items()}
+
+
+def _is_called(name: str, listed: str) -> bool:
+    """Whether a name is the one listed, or one of those it stands for."""
+    begins = listed.removesuffix(ID)
+    if begins == listed:
+        return name == listed
+    return name.startswith(begins) and _AN_ID.fullmatch(name.removeprefix(begins)) is not None
 
 
 def _events(decoder: MultipartDecoder, body: bytes) -> Iterator[Event]:

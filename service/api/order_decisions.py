@@ -11,13 +11,13 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import json_bytes, json_response
 from service.api.asking import needs
+from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.models.orders import CancelBody, ReleaseBody, ReplanBody, ReportBody
 from service.api.once import once
 from service.api.operations import orders
 from service.api.order_answers import order_given
 from service.api.orders import Send
-from service.api.posted import body_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_text
 from service.orders.deciding import Release, Seen, cancel_order, release_order, replan_order, report_on_order

@@ -7,9 +7,10 @@ from flask import Request
 from layout.documents import shipped_cutter_ids
 from layout.errors import DocumentError, Problem
 from service.api.answers import json_bytes
+from service.api.bodies import body_of
 from service.api.models.orders import DocumentName, OrderBody
 from service.api.multipart import parts_of
-from service.api.posted import FORM_MEDIA_TYPE, body_of
+from service.api.posted import FORM_MEDIA_TYPE
 from service.api.problems import ProblemError
 from service.api.request_models import read_text
 from service.limits import Limits

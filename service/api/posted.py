@@ -3,8 +3,9 @@
 from flask import Request
 
 from layout.documents import shipped_movement_ids
+from service.api.bodies import body_of
 from service.api.failures import too_large
-from service.api.models.layouts import LayoutQuery
+from service.api.models.layouts import LayoutQuery, TrialPieceQuery
 from service.api.multipart import parts_of
 from service.api.problems import ProblemError
 from service.documents import Inputs, Shipped, Source, Written, default_cutter
@@ -38,15 +39,24 @@ def read_posted(request: Request, query: LayoutQuery, limits: Limits) -> Inputs:
     for name in DOCUMENT_PARTS:
         if len(parts.get(name, b"")) > limits.document_bytes:
             raise too_large(limits.document_bytes, f"the part {name}")
-    movement = source_of("movement", query.movement, parts.get("movement"))
+    movement, cutter = machines_of(query, parts)
+    return Inputs(tune=tune, movement=movement, cutter=cutter, settings=parts.get("settings", b"{}"))
+
+
+def machines_of(query: LayoutQuery | TrialPieceQuery, parts: dict[str, bytes]) -> tuple[Source, Source]:
+    """The movement and the cutter that a request names or brings; the default cutter where it does neither.
+
+    Raises:
+        ProblemError: A movement is missing; one of the two is given twice.
+    """
+    movement = _source_of("movement", query.movement, parts.get("movement"))
     if movement is None:
         raise ProblemError(
             name="parameter-missing",
             detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
             more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
         )
-    cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
-    return Inputs(tune=tune, movement=movement, cutter=cutter, settings=parts.get("settings", b"{}"))
+    return movement, _source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
 
 
 def _parts(request: Request, limits: Limits) -> dict[str, bytes]:
@@ -65,24 +75,6 @@ def _parts(request: Request, limits: Limits) -> dict[str, bytes]:
     raise _unsupported(f"{request.mimetype!r} is not taken; taken are {', '.join(MEDIA_TYPES)}", {})
 
 
-def body_of(request: Request, most_bytes: int) -> bytes:
-    """The whole body; the web library would cut off a chunked one at its limit and say nothing."""
-    length = request.content_length
-    if length is not None and length > most_bytes:
-        raise too_large(most_bytes, "the request body")
-    body = bytearray()
-    while len(body) <= most_bytes and (chunk := request.stream.read(most_bytes + 1 - len(body))):
-        body += chunk
-    if len(body) > most_bytes:
-        raise too_large(most_bytes, "the request body")
-    if length is not None and len(body) < length:
-        raise ProblemError(
-            name="request-malformed",
-            detail=f"the body ended after {len(body)} bytes, but Content-Length says {length}; send it again",
-        )
-    return bytes(body)
-
-
 def _unsupported(detail: str, headers: dict[str, str]) -> ProblemError:
     return ProblemError(
         name="media-type-unsupported",
@@ -92,7 +84,7 @@ def _unsupported(detail: str, headers: dict[str, str]) -> ProblemError:
     )
 
 
-def source_of(name: str, named: str | None, written: bytes | None) -> Source | None:
+def _source_of(name: str, named: str | None, written: bytes | None) -> Source | None:
     """Where a document comes from: named in the query, brought as a part, or neither.
 
     Raises:

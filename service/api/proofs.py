@@ -4,11 +4,11 @@ from flask import Blueprint, Response, request
 
 from service.api.answers import json_response
 from service.api.asking import open_but_counted
+from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.models.proofs import VerdictBody
 from service.api.operations import proofs
 from service.api.order_files import file_of, file_response
-from service.api.posted import body_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_text
 from service.orders.deciding import customer_says

@@ -4,7 +4,6 @@ The job is the body as JSON, or the part `job` of a multipart form. In a form, d
 `drawing-ID` is the disc.dxf of the disc with that id in the job. A disc without a drawing is a plain circle.
 """
 
-import re
 from dataclasses import dataclass, field
 
 from flask import Blueprint, Request, Response, request
@@ -15,10 +14,11 @@ from layout.sheets.plan import SheetPlan
 from service.access.scopes import Scope
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import open_on_loopback
+from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.failures import too_large
 from service.api.models.layouts import NoQuery
-from service.api.multipart import parts_of
+from service.api.multipart import ID, parts_of
 from service.api.operations import layouts
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
@@ -31,9 +31,8 @@ FORM_MEDIA_TYPE = "multipart/form-data"
 MEDIA_TYPES = (JSON_MEDIA_TYPE, FORM_MEDIA_TYPE)
 JOB_PART, DRAWING_PART = "job", "drawing-"
 LONGEST_TITLE = 40  # characters of a file name
-# What a part of a drawing may be called; the form's reader takes listed names alone.
-_DRAWING_NAMED = re.compile(rb'name="?(drawing-[a-z][a-z0-9-]{0,63})"?')
 _MOST_PARTS = 1 + LIMITS.disc_kinds
+_JOB = "the sheet job"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -95,7 +94,8 @@ def _posted(asked: Request, limits: Limits) -> _Posted:
     """
     coding = asked.headers.get("Content-Encoding", "identity").strip().lower()
     if asked.mimetype not in MEDIA_TYPES or coding != "identity":
-        sent = repr(asked.mimetype) if coding == "identity" else f"a body packed as {coding!r}"
+        sent = repr(asked.mimetype) if asked.mimetype else "a body without a media type"
+        sent = sent if coding == "identity" else f"a body packed as {coding[:80]!r}"
         raise ProblemError(
             name="media-type-unsupported",
             detail=f"{sent} is not taken; a sheet job is sent as {JSON_MEDIA_TYPE}, or with the drawings of its discs "
@@ -103,23 +103,19 @@ def _posted(asked: Request, limits: Limits) -> _Posted:
             more={"allowed_types": list(MEDIA_TYPES)},
             headers={"Accept-Post": ", ".join(MEDIA_TYPES), "Accept-Encoding": "identity"},
         )
-    posted = _Posted(job=asked.get_data()) if asked.mimetype == JSON_MEDIA_TYPE else _from_form(asked, limits)
+    if asked.mimetype == JSON_MEDIA_TYPE:
+        return _Posted(job=body_of(asked, limits.document_bytes, _JOB))
+    posted = _from_form(asked, limits)
     if len(posted.job) > limits.document_bytes:
-        raise too_large(limits.document_bytes, "the sheet job")
+        raise too_large(limits.document_bytes, _JOB)
     return posted
 
 
 def _from_form(asked: Request, limits: Limits) -> _Posted:
-    asked.max_content_length = limits.sheet_form_bytes + 1  # one more, to see that it is too large
-    too_long = (asked.content_length or 0) > limits.sheet_form_bytes
-    body = b"" if too_long else asked.get_data()
-    if too_long or len(body) > limits.sheet_form_bytes:
-        raise too_large(limits.sheet_form_bytes, "the form with the sheet job and its drawings")
-    named = sorted({name.decode("ascii") for name in _DRAWING_NAMED.findall(body)})
     parts = parts_of(
-        body,
+        body_of(asked, limits.sheet_form_bytes, "the form with the sheet job and its drawings"),
         boundary=asked.mimetype_params.get("boundary"),
-        known=(JOB_PART, *named) if named else (JOB_PART, f"{DRAWING_PART}ID"),
+        known=(JOB_PART, f"{DRAWING_PART}{ID}"),
         most_parts=_MOST_PARTS,
     )
     if JOB_PART not in parts:

@@ -6,32 +6,34 @@ from dataclasses import dataclass
 
 from flask import Blueprint, Request, Response, request
 
-from layout.documents import Cutter, Movement, shipped_movement_ids
+from layout.documents import Cutter, Movement
 from layout.trial_walk import trial_files
 from service.access.scopes import Scope
-from service.api.answers import json_response
+from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import asker_or_none, open_on_loopback
+from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.failures import too_large
 from service.api.models.layouts import TrialPieceQuery
 from service.api.multipart import parts_of
 from service.api.operations import layouts
-from service.api.posted import source_of
+from service.api.posted import machines_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
-from service.documents import cutter_from, default_cutter, kept_for, movement_from
+from service.documents import cutter_from, kept_for, movement_from
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE
 from service.parts import Parts
 
 FORM_MEDIA_TYPE = "multipart/form-data"
 DOCUMENT_PARTS = ("movement", "cutter")
-ALL_FILES = "trial-piece.zip"
+ALL_FILES, PICTURE = "trial-piece.zip", "trial-piece.svg"
 # What a POST can answer with, by media type; the first where the client does not mind.
 ANSWERS = {
     JSON_MEDIA_TYPE: "trial-piece.json",
     "image/vnd.dxf": "trial-piece.dxf",
+    "image/svg+xml": PICTURE,
     "application/pdf": "measure.pdf",
     ZIP_MEDIA_TYPE: ALL_FILES,
 }
@@ -78,7 +80,11 @@ def _answer(asked: _Asked, files: Mapping[str, bytes], file_name: str) -> Respon
         content = files[file_name]
     media_type = next(media_type for media_type, name in ANSWERS.items() if name == file_name)
     response = Response(content, content_type=media_type)
-    response.headers["Content-Disposition"] = f'attachment; filename="{_saved_as(asked, file_name)}"'
+    how = "attachment"
+    if file_name == PICTURE:
+        response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
+        how = "inline"
+    response.headers["Content-Disposition"] = f'{how}; filename="{_saved_as(asked, file_name)}"'
     response.headers["Cache-Control"] = "no-cache"
     return response
 
@@ -116,14 +122,7 @@ def _read(asked: Request, query: TrialPieceQuery, opened: Parts) -> _Asked:
     for name, part in parts.items():
         if len(part) > limits.document_bytes:
             raise too_large(limits.document_bytes, f"the part {name}")
-    movement = source_of("movement", query.movement, parts.get("movement"))
-    if movement is None:
-        raise ProblemError(
-            name="parameter-missing",
-            detail=f"no movement is named; add ?movement=ID, one of {', '.join(shipped_movement_ids())}",
-            more={"parameter": "movement", "known_ids": list(shipped_movement_ids())},
-        )
-    cutter = source_of("cutter", query.cutter, parts.get("cutter")) or default_cutter()
+    movement, cutter = machines_of(query, parts)
     asker = asker_or_none()
     owner_id = None if asker is None else asker.owner_id
     movement = kept_for(opened.store, owner_id, "movement", movement)
@@ -132,9 +131,7 @@ def _read(asked: Request, query: TrialPieceQuery, opened: Parts) -> _Asked:
 
 
 def _parts(asked: Request, limits: Limits) -> dict[str, bytes]:
-    body = asked.stream.read(limits.upload_bytes + 1)
-    if len(body) > limits.upload_bytes:
-        raise too_large(limits.upload_bytes, "the request body")
+    body = body_of(asked, limits.upload_bytes)
     if asked.mimetype == FORM_MEDIA_TYPE:
         return parts_of(
             body,
@@ -143,10 +140,11 @@ def _parts(asked: Request, limits: Limits) -> dict[str, bytes]:
             most_parts=limits.form_parts,
         )
     if body:
+        sent = repr(asked.mimetype) if asked.mimetype else "a body without a media type"
         raise ProblemError(
             name="media-type-unsupported",
-            detail=f"{asked.mimetype or 'a body without a media type'!r} is not taken; documents of your own come as "
-            f"parts of {FORM_MEDIA_TYPE}, and a trial piece needs no tune",
+            detail=f"{sent} is not taken; documents of your own come as parts of {FORM_MEDIA_TYPE}, and a trial piece "
+            "needs no tune",
             more={"allowed_types": [FORM_MEDIA_TYPE]},
             headers={"Accept-Post": FORM_MEDIA_TYPE},
         )

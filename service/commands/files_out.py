@@ -1,29 +1,31 @@
-"""Folders that get the files of layouts, each whole or not at all."""
+"""Folders that get the files of a command, each whole or not at all: one way for all commands."""
 
 import contextlib
 import os
 import shutil
 import tempfile
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from pathlib import Path
 
-from layout.walk import CUTTING_FILES
 from service.commands.errors import CommandError
 
 
-def write_folders(folders: Mapping[Path, Mapping[str, bytes]]) -> dict[Path, tuple[str, ...]]:
-    """Write the files of layouts that belong together, each into its folder; files of other names stay.
+def write_folders(
+    folders: Mapping[Path, Mapping[str, bytes]], *, cutting: Sequence[str]
+) -> dict[Path, tuple[str, ...]]:
+    """Write the files that belong together, each into its folder; files of other names stay.
 
     Folders are made where they do not exist. Everything is written in a folder inside each first, on the
-    same disk, then renamed. Cutting files of earlier layouts go first and new ones come last: whenever it is
-    interrupted, no cutting file stands beside files of another layout, nor beside another set's.
+    same disk, then renamed. Cutting files of an earlier run go first and new ones come last: whenever it is
+    interrupted, no cutting file stands beside files of another run, nor beside another set's.
 
     Args:
         folders: The files by name, by their folder. A folder without files is not made, and only its cutting
             files are removed.
+        cutting: The names of this command's cutting files; those of other commands stay as other files do.
 
     Returns:
-        By folder, the cutting files of an earlier layout that were removed and not replaced.
+        By folder, the cutting files of an earlier run that were removed and not replaced.
 
     Raises:
         CommandError: Something cannot be written; says what. Folders made for it are removed again.
@@ -32,15 +34,15 @@ def write_folders(folders: Mapping[Path, Mapping[str, bytes]]) -> dict[Path, tup
     ready: dict[Path, Path] = {}
     try:
         for folder, files in folders.items():
-            _check_free(folder, files)
+            _check_free(folder, {*files, *cutting})
             made += _make(folder) if files else []
         for folder, files in folders.items():
             if files:
                 ready[folder] = _written_inside(folder, files)
-        stale = {folder: _without_cutting_files(folder) for folder in folders}
-        for cutting in (False, True):
+        stale = {folder: _without(folder, cutting) for folder in folders}
+        for last in (False, True):
             for folder, inside in ready.items():
-                _move_out(inside, folder, [name for name in folders[folder] if (name in CUTTING_FILES) == cutting])
+                _move_out(inside, folder, [name for name in folders[folder] if (name in cutting) == last])
     except OSError as refusal:
         where = ", ".join(repr(str(folder)) for folder in folders)
         raise CommandError(f"cannot write to {where}: {refusal.strerror or refusal}") from refusal
@@ -51,8 +53,8 @@ def write_folders(folders: Mapping[Path, Mapping[str, bytes]]) -> dict[Path, tup
     return {folder: tuple(name for name in stale[folder] if name not in files) for folder, files in folders.items()}
 
 
-def _check_free(folder: Path, files: Mapping[str, bytes]) -> None:
-    for name in sorted({*files, *CUTTING_FILES}):
+def _check_free(folder: Path, names: set[str]) -> None:
+    for name in sorted(names):
         if (folder / name).is_dir():
             raise CommandError(f"{str(folder / name)!r} is a folder; remove it or choose another --out")
 
@@ -69,8 +71,8 @@ def _written_inside(folder: Path, files: Mapping[str, bytes]) -> Path:
     return inside
 
 
-def _without_cutting_files(folder: Path) -> list[str]:
-    stale = [name for name in CUTTING_FILES if (folder / name).exists()]
+def _without(folder: Path, cutting: Sequence[str]) -> list[str]:
+    stale = [name for name in cutting if (folder / name).exists()]
     for name in stale:
         (folder / name).unlink()
     return stale
@@ -98,5 +100,5 @@ def _make(folder: Path) -> list[Path]:
 
 def _remove_empty(folders: list[Path]) -> None:
     for folder in reversed(folders):
-        with contextlib.suppress(OSError):  # it is not there, or something is in it
+        with contextlib.suppress(OSError, ValueError):  # not there, or not empty; ValueError: a null character
             folder.rmdir()

@@ -33,9 +33,11 @@ def making_lines(making: Making) -> list[str]:
 
 def _work(making: Making) -> str:
     if making["hit_count"]:
-        force_n = making["hit_force_n"]
-        each = "" if force_n is None else f" of {force_n + (making['stripping_force_n'] or 0):.0f} N"
-        return f"{making['hit_count']} hits{each}"
+        count = len(making["tools"])
+        tools = f" with {count} tool{'s' if count > 1 else ''}" if count else ""
+        force_n = making["press_force_n"]
+        force = "" if force_n is None else f", press force up to {force_n:.0f} N"
+        return f"{making['hit_count']} hits{tools}{force}"
     if making["cut_length_mm"] is None:
         return "path not worked out"
     return f"{making['cut_length_mm'] / _MM_PER_M:.2f} m of cut with {making['pierce_count']} pierces"

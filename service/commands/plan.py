@@ -114,7 +114,7 @@ class _Written:
 def _write(out: Path, files_of_discs: list[dict[str, bytes]]) -> _Written:
     folders = dict(zip(disc_folders(out, len(files_of_discs)), files_of_discs, strict=True))
     earlier = earlier_folders(out, len(files_of_discs))
-    removed = write_folders(folders | {folder: {} for folder in earlier})
+    removed = write_folders(folders | {folder: {} for folder in earlier}, cutting=CUTTING_FILES)
     return _Written(
         discs=tuple(_Made(folder=folder, files=files, removed=removed[folder]) for folder, files in folders.items()),
         removed=tuple(str((folder / name).relative_to(out)) for folder in earlier for name in removed[folder]),

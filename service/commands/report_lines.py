@@ -34,13 +34,14 @@ def kept_lines(report: Report) -> list[str]:
 
 
 def report_lines(report: Report) -> list[str]:
-    """Lines that tell the rest: voices, the worst bars, transpositions, load, drive, metal left and timing."""
+    """Lines that tell the rest: voices, the worst bars, transpositions, load, drive, depth, metal left and timing."""
     return [
         *_voice_lines(report),
         *_bar_lines(report["worst_bars"]),
         *_tried_lines(report["tried"]),
         *_load_lines(report),
         *_drive_lines(report["drive"]),
+        *_depth_lines(report["depth"]),
         *_metal_lines(report["net_section"]),
         *_timing_lines(report["tracks"]),
     ]
@@ -151,6 +152,22 @@ def _drive_lines(drive: Mapping[str, Any]) -> list[str]:
     if drive["not_stated"]:
         told.append(f"not stated: {', '.join(drive['not_stated'])}")
     return wrapped("drive", "; ".join(told)) if told else []
+
+
+def _depth_lines(depth: Mapping[str, Any] | None) -> list[str]:
+    if depth is None:
+        return []
+    told = (
+        f"{depth['least_mm']:.3f} to {depth['most_mm']:.3f} mm at the star wheels, {depth['depth_mm']:g} mm within "
+        f"{depth['plus_minus_mm']:g} mm of forming and {depth['flatness_mm']:g} mm of flatness"
+    )
+    if (limit_mm := depth["flatness_limit_mm"]) is not None:
+        told += (
+            f"; sheets serve up to {limit_mm:.3f} mm out of flat, then {depth['ended_by']}"
+            if limit_mm > 0
+            else f"; not even a flat sheet serves: {depth['ended_by']}"
+        )
+    return wrapped("depth", told)
 
 
 def _metal_lines(left: Mapping[str, Any] | None) -> list[str]:

@@ -8,7 +8,6 @@ from typing import Any
 
 from layout.documents.sheets import read_sheet_job
 from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
-from layout.walk import CUTTING_FILES
 from service.commands.arguments import OneLineParser, Tools, add_json, folder
 from service.commands.errors import ERROR_STANDS, GOOD, CommandError
 from service.commands.files_in import read_file
@@ -57,11 +56,10 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     """
     job = read_sheet_job(read_file(asked.job, what="the sheet job", most_bytes=tools.limits.document_bytes))
     drawings = _drawings(asked.drawing, tools.limits)
-    _check_own(asked.out)
     plan = plan_sheets(job, drawings)
     files = sheet_files_of(plan)
-    removed = _without_stale(asked.out, files)
-    write_folders({asked.out: files})
+    cutting = {*_earlier_drawings(asked.out), *(name for name in files if DRAWING.fullmatch(name))}
+    removed = list(write_folders({asked.out: files}, cutting=sorted(cutting))[asked.out])
     told = json.loads(files[PLAN_FILE])
     if asked.json:
         paths = {name: str(asked.out / name) for name in files}
@@ -94,23 +92,14 @@ def _drawings(named: list[tuple[str, Path]], limits: Limits) -> dict[str, bytes]
     return drawings
 
 
-def _check_own(out: Path) -> None:
-    """Raise where a folder holds the cutting files of a disc: writing files of another kind would remove them."""
-    for name in CUTTING_FILES:
-        if (out / name).exists():
-            raise CommandError(f"{str(out)!r} holds {name} of a disc; choose another --out for the sheets")
-
-
-def _without_stale(out: Path, files: dict[str, bytes]) -> list[str]:
-    """Drawings of an earlier job are removed before this one's are written: they would be cut as part of it."""
+def _earlier_drawings(out: Path) -> list[str]:
+    """Drawings of an earlier job in a folder: beside this one's they would be cut as part of it."""
     try:
-        found = sorted(path for path in out.iterdir() if DRAWING.fullmatch(path.name)) if out.is_dir() else []
-        stale = [path for path in found if path.name not in files and path.is_file()]
-        for path in stale:
-            path.unlink()
-    except OSError as refusal:
-        raise CommandError(f"cannot write to {str(out)!r}: {refusal.strerror or refusal}") from refusal
-    return [path.name for path in stale]
+        found = out.iterdir() if out.is_dir() else ()
+        return sorted(path.name for path in found if DRAWING.fullmatch(path.name) and path.is_file())
+    except (OSError, ValueError) as refusal:  # ValueError: a null character in the path
+        why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
+        raise CommandError(f"cannot write to {str(out)!r}: {why}") from refusal
 
 
 def _lines(told: dict[str, Any]) -> list[str]:

@@ -2,25 +2,21 @@
 
 import argparse
 import json
-import os
-import tempfile
-from collections.abc import Mapping
-from pathlib import Path
 from typing import Any
 
-from layout.trial_walk import trial_files
+from layout.trial_walk import CUTTING_FILE, trial_files
 from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter, folder
-from service.commands.errors import GOOD, CommandError
+from service.commands.errors import GOOD
 from service.commands.files_in import read_named_cutter, read_named_movement
+from service.commands.files_out import write_folders
 from service.commands.output import aligned, say, say_json
 
-DRAWING = "trial-piece.dxf"
 ABOUT = (
     "Make a trial piece: a sector of the movement's disc to cut and measure before a blank is spent. It is "
-    "trial-piece.dxf (to cut), measure.pdf (one page to take to the bench) and trial-piece.json (the same, for "
-    "programs). It goes on the movement as a disc does, with one projection on each track; ladders beside them try "
-    "kerf, width, depth and web in numbered steps. Needs no tune. Ends with 0, or with 2 where the input cannot be "
-    "used (nothing is written)."
+    "trial-piece.dxf (to cut), trial-piece.svg (to look at), measure.pdf (one page to take to the bench) and "
+    "trial-piece.json (the same, for programs). It goes on the movement as a disc does, with one projection on each "
+    "track; ladders beside them try kerf, width, depth and web in numbered steps. Needs no tune. Ends with 0, or with "
+    "2 where the input cannot be used (nothing is written)."
 )
 EXAMPLE = """example:
   discwright trial-piece --movement fernhollow-31 --cutter fibre-laser --out trial
@@ -44,7 +40,7 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     movement = read_named_movement(asked.movement, tools.limits)
     cutter = read_named_cutter(asked.cutter, tools.limits)
     files = trial_files(movement, cutter)
-    _write(asked.out, files)
+    write_folders({asked.out: files}, cutting=(CUTTING_FILE,))
     told = json.loads(files["trial-piece.json"])
     if asked.json:
         say_json({"files": {name: str(asked.out / name) for name in files}, "trial_piece": told})
@@ -52,28 +48,6 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
         say([f"trial piece for {movement.id}, revision {movement.revision}, on {cutter.id}", *_lines(told)])
         say([f"written to {asked.out}: {', '.join(files)}"])
     return GOOD
-
-
-def _write(out: Path, files: Mapping[str, bytes]) -> None:
-    """Write the files into their folder, whole or not at all; a disc's files that stand there stay.
-
-    Everything is written in a folder inside first, then renamed, the drawing last: a drawing never
-    stands beside the measure sheet of another piece.
-
-    Raises:
-        CommandError: The folder cannot be made or written to.
-    """
-    try:
-        out.mkdir(parents=True, exist_ok=True)
-        with tempfile.TemporaryDirectory(prefix=".discwright-", dir=out) as inside:
-            for name, content in files.items():
-                (Path(inside) / name).write_bytes(content)
-            (out / DRAWING).unlink(missing_ok=True)
-            for name in sorted(files, key=DRAWING.__eq__):
-                os.replace(Path(inside) / name, out / name)
-    except (OSError, ValueError) as refusal:  # ValueError: a null character in the path
-        why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
-        raise CommandError(f"cannot write to {str(out)!r}: {why}; choose another --out") from refusal
 
 
 def _lines(told: dict[str, Any]) -> list[str]:

@@ -1,7 +1,8 @@
-"""What a laser travels between its cuts, on the demo discs and on dense ones: against the old order and a long run.
+"""What a laser travels between its cuts, on the demo discs, full ones and dense ones: against an order and a long run.
 
 By track is the order by track, then by angle. 2-opt is a long run by tests/bench/opponents, once under the program's
-rule of heat and once free of it: the difference is what the rule costs.
+rule of heat and once free of it: the difference is what the rule costs. On a full disc no web is thinner than the
+cutter's least; on a dense one openings lie anywhere, and only the time is worth reading.
 """
 
 import sys
@@ -9,6 +10,7 @@ import time
 from pathlib import Path
 
 import numpy as np
+import shapely
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
 
@@ -17,6 +19,7 @@ from layout.documents import Settings, shipped_cutter, shipped_movement
 from layout.mechanics.arrays import FloatArray, frozen_floats, frozen_ints
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import pattern_of
+from layout.mechanics.spacing import core_geometries
 from layout.mechanics.turning import turning_of
 from layout.place.disc import Disc
 from layout.walk import lay_out
@@ -28,6 +31,7 @@ MOVEMENTS = ("fernhollow-31", "mossbrook-67", "tarnlight-17")
 DEMO_TUNE = (Path(__file__).resolve().parents[2] / "service" / "demo" / "tune.mid").read_bytes()
 STARTS = 4
 DENSE = (500, 1_000, 2_000, 4_000)
+FULL = (("fernhollow-31", 200), ("fernhollow-31", 420), ("tarnlight-17", 100), ("tarnlight-17", 180))
 NO_PAIRS = np.zeros((0, 2), dtype=np.int64)
 
 
@@ -74,6 +78,29 @@ def dense_disc(count: int) -> Disc:
     )
 
 
+def full_disc(name: str, count: int) -> Disc:
+    """Projections anywhere on a movement, but for those that would leave too thin a web."""
+    movement, dice = shipped_movement(name), np.random.default_rng(count)
+    pattern, turning = pattern_of(movement, CUTTER), turning_of(movement)
+    tracks = dice.integers(0, len(movement.tracks), 2 * count)
+    angles = dice.uniform(0, 0.9 * 2 * np.pi, 2 * count)
+    placed = on_disc_mm(pattern.core_points_mm, turning.radius_mm[tracks], angles, turning.direction)
+    openings = core_geometries(placed)
+    least_mm = CUTTER.min_web_mm + 2 * pattern.core_round_mm
+    kept: list[int] = []
+    for place, opening in enumerate(openings):
+        if len(kept) < count and (not kept or shapely.distance(openings[kept], opening).min() >= least_mm):
+            kept.append(place)
+    return Disc(
+        movement=movement,
+        cutter=CUTTER,
+        turning=turning,
+        pattern=pattern,
+        track_index=frozen_ints(tracks[kept]),
+        edge_angle_rad=frozen_floats(angles[kept]),
+    )
+
+
 HEAD = ("disc", "cuts", "thin webs", "by track mm", "ours mm", "of 2-opt", "of 2-opt, no rule", "s")
 
 
@@ -82,6 +109,7 @@ def main() -> None:
     say(__doc__ or "")
     demos = [(name, lay_out(DEMO_TUNE, shipped_movement(name), CUTTER, Settings()).disc) for name in MOVEMENTS]
     rows = [row_of(name, disc, long_run=True) for name, disc in demos]
+    rows += [row_of(f"{name}, full", full_disc(name, count), long_run=True) for name, count in FULL]
     rows += [row_of(f"{count} anywhere", dense_disc(count), long_run=False) for count in DENSE]
     say_table(HEAD, rows)
 

@@ -71,6 +71,15 @@ def test_every_file_of_a_set_is_there_and_says_which_disc_it_is() -> None:
     assert b"Disc 2 of 2 for Tarnlight" in files["disc.svg"]
 
 
+def test_the_making_of_each_disc_of_a_set_says_which_it_is_and_its_order() -> None:
+    discs = walk.lay_out_discs(demo_tune(), TARNLIGHT, LASER, read_settings('{"discs": 2, "order": "2026-118"}'))
+
+    told = [json.loads(walk.files_of(disc)["making.json"]) for disc in discs]
+
+    assert [each["disc"] for each in told] == [{"number": 1, "of": 2}, {"number": 2, "of": 2}]
+    assert {each["order_number"] for each in told} == {"2026-118"}
+
+
 def test_each_disc_has_a_fingerprint_of_its_own_known_beforehand() -> None:
     settings = read_settings('{"discs": 2}')
 

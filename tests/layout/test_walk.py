@@ -1,7 +1,10 @@
+import json
+
 import pytest
 
 from layout import walk
-from layout.documents import read_settings
+from layout.check.finding import Code
+from layout.documents import Movement, read_movement, read_settings
 from layout.errors import MidiReadError
 from service.demo.compose import demo_tune
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, movement_with
@@ -36,6 +39,27 @@ def test_the_title_is_the_settings_then_the_tunes_own() -> None:
 
     assert own.title == "Turning Day at Wickenbeck"
     assert given.title == "For the mill"
+
+
+def test_a_title_that_cannot_be_lettered_is_told_by_the_layout_and_keeps_nothing_back() -> None:
+    plain, other = (
+        walk.lay_out(demo_tune(), SHIPPED[0], LASER, read_settings(json.dumps({"title": title})))
+        for title in ("The Mill", "春の海")
+    )
+
+    assert [finding.code for finding in plain.findings] == []
+    assert [finding.code for finding in other.findings] == [Code.LABEL_MISSING]
+    assert other.good_to_cut
+
+
+def test_a_label_that_finds_no_room_is_told_by_the_layout() -> None:
+    tight = SHIPPED[2].model_dump(mode="json", by_alias=True)
+    tight["disc"] |= {"centre_hole_mm": 36.0, "outer_diameter_mm": 106.0, "features": []}
+
+    laid_out = walk.lay_out(demo_tune(), read_movement(json.dumps(tight)), LASER, DEFAULTS)
+
+    told = [finding.message for finding in laid_out.findings if finding.code is Code.LABEL_MISSING]
+    assert told == ["There is no room on the disc for: side, movement, burr side, fingerprint, title."]
 
 
 def test_the_cutting_files_are_kept_back_while_an_error_stands() -> None:
@@ -82,10 +106,10 @@ def test_a_reason_marks_nothing_on_a_disc_that_is_good_to_cut() -> None:
 
 
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
-def test_the_same_inputs_give_the_same_bytes(movement: object) -> None:
-    first = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")  # type: ignore[arg-type] - parametrised
+def test_the_same_inputs_give_the_same_bytes(movement: Movement) -> None:
+    first = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")
 
-    again = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")  # type: ignore[arg-type] - parametrised
+    again = walk.files_of(walk.lay_out(demo_tune(), movement, LASER, DEFAULTS), not_good="a test")
 
     assert again == first
 

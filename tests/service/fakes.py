@@ -107,6 +107,7 @@ REPORT: dict[str, Any] = {
         "not_stated": [],
     },
     "net_section": None,
+    "depth": None,
     "tracks": [],
 }
 

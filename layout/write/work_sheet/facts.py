@@ -13,6 +13,7 @@ from layout.write.work_sheet.rows import Row, rows_written
 NOT_STATED = "not stated"
 _NAME_MM = 23.0
 _MOST_FEATURES = 4  # rows of features that are told; the drawing has them all
+_MOST_TOOLS = 4  # rows of tools that are told; the program's head has them all
 _CLASS_NAMES: dict[ToleranceClass, str] = {
     "iso-9013-1": "ISO 9013 class 1",
     "iso-9013-2": "ISO 9013 class 2",
@@ -73,8 +74,28 @@ def _of_the_cutter(plan: CutPlan, disc: Disc) -> Iterator[Row]:
             "bridges",
             f"{cutter.bridges.count} in the rim, {cutter.bridges.width_mm:g} mm wide: break out, stone flush",
         )
+        if (slugs := cutter.bridges.slugs) is not None:
+            yield "", f"{slugs.count} in each slug from {slugs.least_slug_mm:g} mm up, {slugs.width_mm:g} mm wide"
+    yield from _tools(plan, cutter)
+    if cutter.kind == "punch-press":
+        yield "rim", "not struck: the blank comes round, or is blanked last"
+
+
+def _tools(plan: CutPlan, cutter: Cutter) -> Iterator[Row]:
+    """The tools in the order taken up, each with what it makes."""
+    titles = {tool.tool: tool.title for tool in cutter.tools}
+    used = [(hits.tool, _counted(len(hits.at_mm), "hole")) for hits in plan.hole_hits]
     if plan.tool:
-        yield "tool", next(f"{tool.tool}: {tool.title}" for tool in cutter.tools if tool.tool == plan.tool)
+        used.append((plan.tool, _counted(len(plan.order), "projection")))
+    told = used if len(used) <= _MOST_TOOLS else [*used[: _MOST_TOOLS - 1], used[-1]]
+    for place, (tool, what) in enumerate(told):
+        yield ("tools" if len(used) > 1 else "tool") if place == 0 else "", f"{tool}: {titles[tool]}; {what}"
+    if len(told) < len(used):
+        yield "and", f"{len(used) - len(told)} more tools for holes: see the program's head"
+
+
+def _counted(count: int, what: str) -> str:
+    return f"{count} {what}{'' if count == 1 else 's'}"
 
 
 def _kerf(cutter: Cutter) -> str:

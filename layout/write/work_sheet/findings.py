@@ -10,7 +10,7 @@ from layout.write.work_sheet.paper import SMALL, Area, Face, Paper, at_most, hea
 
 _BOLD = Face(size_mm=SMALL.size_mm, bold=True)
 _LEVEL_MM, _CODE_MM = 14.0, 34.0
-_MOST_LINES = 2  # of one message; layout.json has it whole
+_MOST_LINES = 2  # of one message where there is no room for all; layout.json has it whole
 _URGENCY = {level: place for place, level in enumerate(Level)}
 _Kind = tuple[Level, str]
 
@@ -31,8 +31,9 @@ class _Listing:
 def findings_written(paper: Paper, area: Area, laid_out: LaidOut) -> Area:
     """Writes the findings down from the top of an area, and gives what is left.
 
-    The first finding of every kind comes before the second of any; what is not listed is counted by
-    its code, so that every code stands on the sheet.
+    Where there is room for all of them, each is told whole, with what to do about it. Else the first
+    finding of every kind comes before the second of any, and what is not listed is counted by its
+    code, so that every code stands on the sheet.
     """
     counts = ", ".join(level_counts(laid_out)) or "none"
     area = headed(paper, area, f"Findings: {counts}")
@@ -64,15 +65,20 @@ def _listing(findings: tuple[Finding, ...], width_mm: float, room: int) -> _List
     places = [place for _, place in sorted(turns)[:room]]
     message_mm = width_mm - _LEVEL_MM - _CODE_MM
     messages = {place: at_most(_MOST_LINES, urgent[place].message, SMALL, message_mm) for place in places}
+    whole = {place: _with_remedy(urgent[place], message_mm) for place in places}
     short = {place: at_most(1, urgent[place].message, SMALL, message_mm) for place in places}
     for shown in range(len(places), -1, -1):
         chosen = sorted(places[:shown])
         tail = _tail(seen - Counter(_kind(urgent[place]) for place in chosen), width_mm)
-        for lines in (messages, short):
+        for lines in (whole, messages, short):
             listing = _Listing(entries=tuple((urgent[place], tuple(lines[place])) for place in chosen), tail=tail)
             if listing.line_count <= room:
                 return listing
     return _Listing(entries=(), tail=_tail(seen, width_mm)[:room])
+
+
+def _with_remedy(finding: Finding, message_mm: float) -> list[str]:
+    return [*wrapped(finding.message, SMALL, message_mm), *wrapped(f"To do: {finding.remedy}", SMALL, message_mm)]
 
 
 def _kind(finding: Finding) -> _Kind:

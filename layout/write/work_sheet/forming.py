@@ -4,6 +4,7 @@ from collections.abc import Iterator
 
 from layout.documents.cutter import Cutter, Fold, Tool
 from layout.mechanics.projection import Pattern, fitting_tool
+from layout.mechanics.slugs import held_openings
 from layout.place.disc import Disc
 from layout.write.work_sheet.forming_sketch import bend_to_deg, sketched
 from layout.write.work_sheet.paper import BODY, STRONG, Area, Paper, headed, written
@@ -37,7 +38,7 @@ def how_formed(disc: Disc) -> list[str]:
     tool = fitting_tool(disc.movement, cutter)
     if tool is None:
         return [f"{cutter.id} states no way to make these projections: see the findings."]
-    return list(_lances(tool))
+    return list(_lances(tool, None if cutter.press is None else cutter.press.forms))
 
 
 def _slots(disc: Disc) -> Iterator[str]:
@@ -68,8 +69,10 @@ def _side(at_mm: float) -> str:
     return "ahead of" if at_mm > 0 else "behind"
 
 
-def _lances(tool: Tool) -> Iterator[str]:
-    yield f"Tool {tool.tool}: {tool.title}. One hit cuts three sides and forms the tab down to the star side."
+def _lances(tool: Tool, forms: str | None) -> Iterator[str]:
+    way = {"up": " upward: the star side lies above", "down": " downward: the label side lies above"}.get(forms or "")
+    stands = " to the star side." if way is None else f"{way} on the machine."
+    yield f"Tool {tool.tool}: {tool.title}. One hit cuts three sides and forms the tab{stands}"
     at = "on" if tool.edge_ahead_mm == 0 else f"{abs(tool.edge_ahead_mm):g} mm {_side(tool.edge_ahead_mm)}"
     yield (
         f"Footprint {tool.footprint_length_mm:g} × {tool.footprint_width_mm:g} mm, centred on the strike point; "
@@ -87,12 +90,26 @@ def order_of_work(disc: Disc) -> list[str]:
             "A lance cuts and forms in one hit, so its edges cannot be deburred first: keep punch and die sharp.",
             "Deburr rim and holes; take out every loose slug.",
         ]
+    elif cutter.kind == "punch-press":
+        steps += ["Strike the holes, then the slots, the rim last.", f"Take out every slug. Deburr {_burr(cutter)}."]
     else:
         held = "" if cutter.bridges is None else f" Break its {cutter.bridges.count} bridges and stone the stubs flush."
-        steps += [f"Cut; take the disc out when it is cool.{held}", f"Take out every slug. Deburr {_burr(cutter)}."]
+        slugs = f"{_held_slugs(disc)}Take out every {'loose ' if _held_slugs(disc) else ''}slug."
+        steps += [f"Cut; take the disc out when it is cool.{held}", f"{slugs} Deburr {_burr(cutter)}."]
         folds = disc.pattern.making == "fold" and disc.projection_count > 0
         steps += ["Then fold, never before deburring."] if folds else []
     return [*steps, "Inspect by the list on sheet 2."]
+
+
+def _held_slugs(disc: Disc) -> str:
+    """What is done with slugs that bridges hold, a sentence and a space; "" for none."""
+    cutter = disc.cutter
+    held = [each.what for each in held_openings(disc.pattern, disc.movement, cutter) if each.gaps is not None]
+    if not held or cutter.bridges is None or cutter.bridges.slugs is None:
+        return ""
+    count = cutter.bridges.slugs.count
+    on = "one bridge" if count == 1 else f"{count} bridges"
+    return f"Knock out the slugs of {', '.join(dict.fromkeys(held))}, each on {on}; stone the stubs flush. "
 
 
 def _burr(cutter: Cutter) -> str:

@@ -88,7 +88,8 @@ def inspected(disc: Disc) -> Iterator[str]:
     drives = [feature for feature in blank.features if feature.purpose != "stop"]
     if drives:
         yield "Drive and location features take their pins freely, all at once."
-    yield "Label side up, the index mark's barb points the way the disc turns."
+    marked = disc.cutter.drawn_from.replace("-", " ").capitalize()
+    yield f"{marked} up, the index mark's barb points the way the disc turns."
     yield "First turn: by hand, the spring let down, the combs watched; stop at the first resistance."
 
 

@@ -3,14 +3,13 @@
 ISO 32000-1, Annex D: the WinAnsi encoding holds the letters of Windows code page 1252.
 """
 
-import re
 import unicodedata
 
+from layout.mechanics.plain_letters import latin_like
 from layout.write.plain_text import one_line
 
 IN_OTHER_LETTERS = "(in letters this sheet cannot show: see layout.json)"
 _UNKNOWN = "?"
-_STROKED = re.compile(r"LATIN (SMALL|CAPITAL) LETTER (?:DOTLESS )?([A-Z])(?: WITH .+)?")
 _LIKE_SIGNS = str.maketrans({"\N{MINUS SIGN}": "-", "\N{NO-BREAK SPACE}": " ", "\N{NON-BREAKING HYPHEN}": "-"})
 
 
@@ -38,10 +37,7 @@ def _shown(letter: str) -> str:
     apart = [part for part in unicodedata.normalize("NFKD", letter) if unicodedata.category(part) != "Mn"]
     if apart and all(map(_has_letter, apart)):
         return "".join(apart)
-    named = _STROKED.fullmatch(unicodedata.name(letter, ""))
-    if named is None:
-        return _UNKNOWN
-    return named[2].lower() if named[1] == "SMALL" else named[2]
+    return latin_like(letter) or _UNKNOWN
 
 
 def _has_letter(letter: str) -> bool:

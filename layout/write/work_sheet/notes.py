@@ -3,7 +3,7 @@
 from collections import Counter
 from collections.abc import Iterator
 
-from layout.cut.plan import Circles, CutPlan, Entity, Lettering
+from layout.cut.plan import Circles, CutPlan, Entity, Lettering, Outlines
 from layout.making.making import Making
 from layout.place.disc import Disc
 from layout.write.svg_signs import turning_as_drawn
@@ -20,6 +20,7 @@ _SECONDS_PER_MINUTE = 60
 _KILO = 1000
 _WHAT = {"SLITS": "slits", "SLOTS": "slots", "HITS": "hits", "HOLES": "holes", "RIM": "rim", "LEADS": "lead-ins"}
 _MOST_NOT_STATED_LINES = 8
+_MOST_NOT_COUNTED_LINES = 6
 
 
 def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: Making | None) -> Area:
@@ -29,7 +30,7 @@ def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: M
         area = written(paper, area, line, SMALL).below(0.4)
     area = _bar(paper, area.below(2), disc)
     area = headed(paper, area.below(2), "What is cut")
-    area = rows_written(paper, area, list(_counted(plan)), name_mm=_NAME_MM)
+    area = rows_written(paper, area, list(_counted(plan, disc)), name_mm=_NAME_MM)
     if making is None:
         return area
     area = headed(paper, area.below(1.5), "What making it takes")
@@ -39,7 +40,8 @@ def notes_written(paper: Paper, area: Area, plan: CutPlan, disc: Disc, making: M
         missing = f"Not stated, so not told: {', '.join(making.not_stated)}."
         area = written(paper, area, missing, SMALL, most_lines=_MOST_NOT_STATED_LINES)
     if making.not_counted:
-        area = written(paper, area, f"Not counted in time and price: {', '.join(making.not_counted)}.", SMALL)
+        left_out = f"Not counted in time and price: {', '.join(making.not_counted)}."
+        area = written(paper, area, left_out, SMALL, most_lines=_MOST_NOT_COUNTED_LINES)
     return area
 
 
@@ -79,15 +81,21 @@ def _bar(paper: Paper, area: Area, disc: Disc) -> Area:
     return written(paper, left, proof, SMALL)
 
 
-def _counted(plan: CutPlan) -> Iterator[Row]:
-    """How many outlines, circles and points each layer holds."""
+def _counted(plan: CutPlan, disc: Disc) -> Iterator[Row]:
+    """How many outlines, circles and points each layer holds; what bridges hold is one in so many pieces."""
+    slugs = None if disc.cutter.bridges is None else disc.cutter.bridges.slugs
     counts: Counter[str] = Counter()
+    in_lines: Counter[str] = Counter()
     for entity in plan.disc.entities:
-        counts[entity.layer] += _count(entity)
+        is_line = isinstance(entity, Outlines) and not entity.closed and entity.layer in ("HOLES", "SLOTS")
+        (in_lines if is_line else counts)[entity.layer] += _count(entity)
     for layer, what in _WHAT.items():
-        if counts[layer]:
-            tool = f", tool {plan.tool}" if layer == "HITS" and plan.tool else ""
-            yield what, f"{counts[layer]}{tool}"
+        held = in_lines[layer] // slugs.count if slugs is not None else 0
+        if counts[layer] or held:
+            more = f", tool {plan.tool}" if layer == "HITS" and plan.tool else ""
+            more += f", {held} of them in {in_lines[layer]} pieces" if held else ""
+            in_pieces = layer == "RIM" and counts[layer] > 1
+            yield what, f"1, in {counts[layer]} pieces" if in_pieces else f"{counts[layer] + held}{more}"
     yield "projections", f"{len(plan.order)}"
 
 
@@ -105,9 +113,12 @@ def _taken(making: Making) -> Iterator[Row]:
     )
     yield from ((name, f"{length_mm / _KILO:.3f} m") for name, length_mm in lengths if length_mm)
     counts = (("pierced", making.pierce_count), ("struck", making.hit_count))
-    yield from ((name, f"{count} times") for name, count in counts if count)
+    yield from ((name, "once" if count == 1 else f"{count} times") for name, count in counts if count)
     forces = (("force of a hit", making.hit_force_n), ("stripping", making.stripping_force_n))
     yield from ((name, f"{force_n / _KILO:.2f} kN") for name, force_n in forces if force_n is not None)
+    if making.press_force_n is not None:
+        most = max(making.tools, key=lambda work: work.press_force_n or 0.0)
+        yield "press force", f"{making.press_force_n / _KILO:.2f} kN, by {most.tool}"
     if making.time_s is not None:
         yield "machine time", _minutes(making.time_s)
     masses = (("mass of blank", making.blank_mass_kg), ("mass of disc", making.disc_mass_kg))

@@ -293,7 +293,8 @@ def _drive_carries(problem: Problem, spots: Sequence[Spot]) -> bool:
     if problem.drive is None:
         return True
     for at_ns in {spot.asked_ns for spot in spots}:
-        before = [(spot.track, (spot.asked_ns - at_ns) % problem.turn_ns) for spot in spots]
+        releases = [(spot.track, spot.asked_ns + turn_ns - at_ns) for spot in spots for turn_ns in (0, problem.turn_ns)]
+        before = [(track, before_ns) for track, before_ns in releases if before_ns >= 0]
         if sum(load_before(problem.drive, track, before_ns) for track, before_ns in before) > problem.drive.limit:
             return False
     return True

@@ -59,6 +59,22 @@ def test_a_size_is_of_the_first_level_it_is_below(hole_mm: float, level: Level) 
     assert levels_of(findings) == [level]
 
 
+@pytest.mark.parametrize(
+    ("hole_mm", "levels"),
+    # 0.7, 1.0 and 1.5 times 0.5 mm are 0.35, 0.5 and 0.75.
+    [(0.349, [Level.ERROR]), (0.35, [Level.WARNING]), (0.5, [Level.ADVICE]), (0.75, [])],
+)
+def test_a_shop_that_states_no_ratios_of_its_own_is_held_to_the_usual_three(
+    hole_mm: float, levels: list[Level]
+) -> None:
+    movement = movement_with({"disc/centre_hole_mm": hole_mm})
+    cutter = cutter_with({"feature_rules": {}})
+
+    found = found_on(disc_of(movement, [(1, 10.0)], cutter))
+
+    assert levels_of([finding for finding in found if "centre hole is" in finding.message]) == levels
+
+
 def test_a_size_at_the_last_limit_passes() -> None:
     movement = movement_with({"disc/centre_hole_mm": 1.0})
 

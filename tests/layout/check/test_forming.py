@@ -100,6 +100,20 @@ def test_lanced_tabs_are_bent_too_and_slots_are_not() -> None:
     assert bends_lie_across_the_rolling(disc_of(slots, [(1, 8.0)])) == []
 
 
+def test_a_lance_is_bent_along_the_radius_where_its_tool_strikes() -> None:
+    # The frame stands square w from the edge: asin(w/50) further round, w being negative behind the edge.
+    disc = rolled(90, [10.0], PRESS)
+    off_deg = math.degrees(math.asin(disc.pattern.strike_u_mm / 50))
+
+    [finding] = bends_lie_across_the_rolling(disc)
+
+    assert abs(off_deg) > 0.5
+    assert finding.measured == pytest.approx(abs(off_deg), abs=1e-9)
+    # ahead of the line by as much on a disc rolled along the bend itself: the disc turns clockwise, s = 1
+    [along] = bends_lie_across_the_rolling(rolled(90 - off_deg, [10.0], PRESS))
+    assert along.measured == pytest.approx(0.0, abs=1e-9)
+
+
 @settings(deadline=None)
 @given(st.floats(-360, 360), st.floats(-360, 360), st.lists(st.floats(0, 50), min_size=1, max_size=8))
 def test_turning_the_disc_and_its_rolling_together_changes_nothing(

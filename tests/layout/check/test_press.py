@@ -38,6 +38,16 @@ def test_a_press_below_the_force_of_a_hit_is_too_weak() -> None:
     assert "stronger press" in finding.remedy
 
 
+def test_a_press_too_weak_for_the_tool_of_a_hole_alone_is_told_of_that_tool() -> None:
+    # 9 pi = 28.27 mm; * 0.5 * 276 * 1.2 = 4682 N, and L12 needs 1027 N
+    disc = struck(with_shear(276) | {"disc/centre_hole_mm": 9}, {"press/capacity_n": 4681})
+
+    [finding] = press_is_strong_enough(disc)
+
+    assert finding.measured == pytest.approx(9 * math.pi * 0.5 * 276 * 1.2)
+    assert finding.message.startswith("A hit of R9 shears 28.27 mm of 0.5 mm cold-rolled steel at 276 N/mm²")
+
+
 def test_a_press_with_the_force_of_a_hit_passes() -> None:
     assert press_is_strong_enough(struck(with_shear(276), {"press/capacity_n": NEEDED_N})) == []
 
@@ -112,6 +122,55 @@ def test_a_hit_over_the_edge_of_a_hole_of_the_blank_is_an_error() -> None:
     assert finding.code is Code.HIT_OVER_OPENING
     assert 0 < (finding.measured or 0) < 100
     assert "into the drive hole at 0.000°" in finding.message
+
+
+def hole_row(radius_mm: float, **more: Any) -> dict[str, Any]:
+    """Holes of 5 mm, for which the press has a tool."""
+    size = {"width_mm": 5, "length_mm": 5}
+    return {"purpose": "drive", "shape": "hole", "radius_mm": radius_mm, "first_at_deg": 90} | size | more
+
+
+def lens_mm2(one_mm: float, other_mm: float, apart_mm: float) -> float:
+    """The area two circles have in common (Wolfram MathWorld, Circle-Circle Intersection, from memory)."""
+    one_part = one_mm**2 * math.acos((apart_mm**2 + one_mm**2 - other_mm**2) / (2 * apart_mm * one_mm))
+    other_part = other_mm**2 * math.acos((apart_mm**2 + other_mm**2 - one_mm**2) / (2 * apart_mm * other_mm))
+    kite = (one_mm + other_mm - apart_mm) * (apart_mm + one_mm - other_mm)
+    kite *= (apart_mm - one_mm + other_mm) * (apart_mm + one_mm + other_mm)
+    return one_part + other_part - math.sqrt(kite) / 2
+
+
+def test_of_two_holes_that_overlap_the_one_struck_later_is_told_once() -> None:
+    rows = [hole_row(20), hole_row(20, first_at_deg=100, width_mm=3, length_mm=3)]
+
+    [finding] = hits_fall_on_whole_metal(struck({"disc/features": rows}, {}))
+
+    assert (finding.code, finding.level) == (Code.HIT_OVER_OPENING, Level.ERROR)
+    # middles 2 * 20 * sin 5° = 3.4862 mm apart
+    share = lens_mm2(1.5, 2.5, 40 * math.sin(math.radians(5))) / (math.pi * 1.5**2)
+    assert finding.measured == pytest.approx(100 * share, rel=1e-3)
+    assert finding.message == (
+        f"The hit of the drive hole at 100.000° falls with {100 * share:.1f} % of its footprint into the drive hole at "
+        "90.000°: the metal pushes the punch aside and its edge runs into the die."
+    )
+    assert finding.at.radius_mm == pytest.approx(20)
+    assert finding.at.angle_deg == pytest.approx(100)
+    assert "cut apart" in finding.remedy
+
+
+def test_a_hole_struck_into_a_hole_cut_apart_is_an_error_and_two_cut_apart_are_none() -> None:
+    apart = hole_row(20, first_at_deg=100, width_mm=3.5, length_mm=3.5)
+    holes_off = {"disc/features": [hole_row(20, width_mm=5.5, length_mm=5.5), apart]}
+
+    [finding] = hits_fall_on_whole_metal(struck({"disc/features": [hole_row(20), apart]}, {}))
+
+    assert "The hit of the drive hole at 90.000° falls" in finding.message
+    assert hits_fall_on_whole_metal(struck(holes_off, {})) == []
+
+
+def test_a_hole_that_two_rows_share_is_struck_once_and_is_no_finding() -> None:
+    rows = [hole_row(20, count=2), hole_row(20, first_at_deg=270, purpose="location")]
+
+    assert hits_fall_on_whole_metal(struck({"disc/features": rows}, {})) == []
 
 
 def test_a_foot_on_a_tab_formed_before_is_an_error() -> None:

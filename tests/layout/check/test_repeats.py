@@ -75,7 +75,10 @@ def test_a_repeat_before_the_damper_has_recovered_is_found_at_the_fastest_turn()
 
     assert finding.code is Code.DAMPER_NOT_RECOVERED
     assert finding.measured == pytest.approx(0.8)
-    assert finding.message == "Two plucks on track 1 are 0.800 s apart at the fastest turn; its damper needs 0.900 s."
+    assert (
+        finding.message == "Two plucks on track 1 are 0.800 s apart at the fastest turn; its damper needs 0.900 s: "
+        "the tooth is met while it still sounds, and buzzes."
+    )
 
 
 def test_a_damper_that_has_just_recovered_passes() -> None:

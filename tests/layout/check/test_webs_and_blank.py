@@ -48,6 +48,20 @@ def test_openings_that_just_keep_the_web_pass() -> None:
     assert webs_between_openings_hold(disc_of(movement, [(1, 10.0), (2, 10.0)])) == []
 
 
+def test_a_relief_that_comes_near_its_neighbour_thins_the_web() -> None:
+    # Openings on one track, 3.3 mm apart: a relief runs past the tangent line, 0.4 mm ahead, towards the next opening.
+    apart_s = 3.3 / (2 * math.pi * 50 / 60)
+    plucks = [(1, 10.0), (1, 10.0 + apart_s)]
+
+    def webs_mm(relief_mm: float) -> list[float]:
+        cutter = cutter_with({"fold/relief_mm": relief_mm, "min_web_mm": 3})
+        return [finding.measured or 0.0 for finding in webs_between_openings_hold(disc_of(PLAIN, plucks, cutter))]
+
+    [short], [long] = webs_mm(0.1), webs_mm(0.4)
+    # straight across but for the 3.8 degrees between the two, over the half width of 1.02 mm
+    assert short - long == pytest.approx(0.3, abs=0.02)
+
+
 def test_openings_that_run_into_each_other_are_said_to() -> None:
     [finding] = webs_between_openings_hold(disc_of(PLAIN, [(1, 10.0), (1, 10.1)]))
 

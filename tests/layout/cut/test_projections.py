@@ -187,7 +187,7 @@ def test_outlines_stand_in_the_order_the_plan_names() -> None:
         # Lances are formed hits, and formed hits come last (common practice): after the holes.
         (SHIPPED[0], PRESS, ["MARKS", "HOLES", "HITS", "RIM"]),
         (SHIPPED[2], LASER, ["MARKS", "SLOTS", "HOLES", "RIM"]),
-        (SHIPPED[2], PRESS, ["MARKS", "HITS", "HOLES", "RIM"]),
+        (SHIPPED[2], PRESS, ["MARKS", "HOLES", "HITS", "RIM"]),
     ],
 )
 def test_marks_come_first_then_inside_before_outside_and_the_rim_last(
@@ -258,7 +258,7 @@ def test_a_laser_that_cannot_form_the_projections_cuts_none_of_them() -> None:
 
 def cut_numbers(drawing: Drawing) -> list[tuple[str, list[float], list[float]]]:
     """Layer, coordinates and bulges of all that is drawn but the lettering, in order."""
-    numbers = []
+    numbers: list[tuple[str, list[float], list[float]]] = []
     for entity in drawing.entities:
         match entity:
             case Outlines():

@@ -6,7 +6,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from layout.cut.striking import StrikePath, hit_order, strike_path
+from layout.cut.striking import StrikePath, hit_order, strike_path, struck_holes
 from layout.documents import Settings
 from layout.mechanics.arrays import frozen_floats
 from layout.place.disc import Disc
@@ -73,6 +73,32 @@ def test_the_path_is_what_table_and_slide_move() -> None:
     assert math.degrees(path.turned_rad) == pytest.approx(30 + 12 + 2 * 1.0)
     assert path.slid_mm == pytest.approx(10 + 40)
     assert path.tool_change_count == 0
+
+
+def test_holes_are_struck_first_and_what_they_move_and_change_counts() -> None:
+    # a tool that strikes on the working edge; three tools: R5 at 90 and 270 degrees, R9 in the middle, L12 at 30
+    row = {"purpose": "drive", "shape": "hole", "radius_mm": 20, "first_at_deg": 90, "count": 2}
+    row |= {"width_mm": 5, "length_mm": 5}
+    movement = movement_with({"disc/features": [row], "disc/centre_hole_mm": 9, "before_music_deg": 30})
+    disc = disc_of(movement, [(1, 0.0)], cutter_with({"tools/0/edge_ahead_mm": 0}, PRESS))
+
+    holes = struck_holes(disc)
+    path = strike_path(disc, hit_order(disc))
+
+    assert [(hits.tool.tool, len(hits.at_mm)) for hits in holes] == [("R5", 2), ("R9", 1)]
+    assert (path.hit_count, path.tool_change_count) == (4, 2)
+    # 20 to 20 to 0 to 50 mm; from 90 to 270, then the 120 on to 30 before the centre hole, which needs no turn itself,
+    # or from 270 to 90 and 60 back, a degree too far and on again
+    assert path.slid_mm == pytest.approx(0 + 20 + 50)
+    assert math.degrees(path.turned_rad) in (pytest.approx(180 + 120), pytest.approx(180 + 60 + 2))
+
+
+def test_projections_without_a_tool_are_not_struck() -> None:
+    disc = disc_of(movement_with({"disc/centre_hole_mm": 9, "projection/width_mm": 2}), [(1, 0.0), (2, 1.0)], PRESS)
+
+    path = strike_path(disc, hit_order(disc))
+
+    assert (path.hit_count, path.turned_rad, path.slid_mm, path.tool_change_count) == (1, 0.0, 0.0, 0)
 
 
 @pytest.mark.parametrize("plucks", [[], [(1, 0.0)]], ids=["none", "one"])

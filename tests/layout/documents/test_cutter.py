@@ -20,6 +20,32 @@ def test_the_first_cutter_is_the_laser() -> None:
     assert shipped_cutter_ids()[0] == "fibre-laser"
 
 
+@pytest.mark.parametrize(("forms", "side"), [("up", "star-side"), ("down", "label-side")])
+def test_a_press_shows_the_face_that_lies_above_as_its_tools_form(forms: str, side: str) -> None:
+    # A tab stands on the star side: pushed up, that side lies above; pushed down, the label side.
+    unstated = {**PRESS.model_dump(mode="json"), "press": {"forms": forms}}
+    del unstated["drawn_from"]
+
+    cutter = read_cutter(json.dumps(unstated))
+
+    assert cutter.drawn_from == side
+    assert read_cutter(cutter.model_dump_json()) == cutter
+
+
+@pytest.mark.parametrize("forms", ["up", "down"])
+def test_a_side_that_is_stated_is_drawn_whichever_way_a_press_forms(forms: str) -> None:
+    assert cutter_with({"press/forms": forms, "drawn_from": "label-side"}, PRESS).drawn_from == "label-side"
+
+
+@pytest.mark.parametrize("press", [{}, {"forms": None}, {"forms": "sideways"}, "press", None])
+def test_a_side_that_nothing_tells_must_be_stated(press: object) -> None:
+    unstated = {**PRESS.model_dump(mode="json"), "press": press}
+    del unstated["drawn_from"]
+
+    with pytest.raises(DocumentError, match="/drawn_from: "):
+        read_cutter(json.dumps(unstated))
+
+
 def test_a_cutter_may_name_its_own_layers() -> None:
     cutter = cutter_with({"layers": {"SLITS": {"name": "CUT-INSIDE", "colour": 3}}})
 
@@ -54,6 +80,10 @@ def test_a_cutter_may_name_its_own_layers() -> None:
         (PRESS, {"tools/2/edge_ahead_mm": 0.0}, "edge_ahead_mm must be minus half of footprint_length_mm"),
         (PRESS, {"tools/0/tab_depth_mm": None}, "lance tool L12 needs tab_width_mm and tab_depth_mm"),
         (PRESS, {"tools/0/edge_ahead_mm": 1.2}, "edge_ahead_mm puts the working edge outside the footprint"),
+        (PRESS, {"tools/0/edge_ahead_mm": None}, "lance tool L12 needs edge_ahead_mm"),
+        (PRESS, {"tools/2/edge_ahead_mm": None}, "slot tool S22 needs edge_ahead_mm"),
+        (PRESS, {"tools/3/edge_ahead_mm": 0.5}, "hole tool R3 has no working edge; leave edge_ahead_mm out"),
+        (PRESS, {"tools/3/tab_width_mm": 1}, "hole tool R3 forms no tab; leave tab_width_mm and tab_depth_mm out"),
         (PRESS, {"tools/1/tool": "L12"}, "two tools have the same name"),
         (LASER, {"min_web_mm": 60}, "/min_web_mm: .*less than or equal to 50, got 60"),
         (LASER, {"min_web_mm": -1}, "/min_web_mm: Input should be greater than or equal to 0.001, got -1"),

@@ -164,3 +164,11 @@ def test_an_outline_of_fewer_than_three_corners_is_refused(corners: list[list[fl
 def test_text_that_is_no_json_is_told() -> None:
     with pytest.raises(DocumentError, match=r"sheet job: .*not JSON"):
         read_sheet_job("{")
+
+
+def test_a_disc_smaller_than_a_speck_is_refused() -> None:
+    [(pointer, message)] = faults(discs=[{"id": "a", "diameter_mm": 0.999, "quantity": 1}])
+
+    assert pointer == "/discs/0/diameter_mm"
+    assert "greater than or equal to 1, got 0.999" in message
+    assert read(discs=[{"id": "a", "diameter_mm": 1, "quantity": 1}]).discs[0].diameter_mm == 1

@@ -323,12 +323,56 @@ def test_a_hit_takes_its_sheared_length_times_thickness_times_strength() -> None
     # low-carbon cold-rolled sheet): 855.6 N; the stripping takes a tenth of that.
     assert making.hit_force_n == pytest.approx(855.6)
     assert making.stripping_force_n == pytest.approx(85.56)
+    assert making.press_force_n == pytest.approx(855.6 + 85.56)
     assert making.not_stated == ()
 
 
 def test_what_no_figure_counts_on_a_press_is_named_and_a_laser_counts_all() -> None:
-    assert made(NOTHING, {}, STEEL, PRESS_IN_FULL).not_counted == ("holes", "rim", "first tool")
+    # the plain movement's centre hole of 10 mm has no tool
+    assert made(NOTHING, {}, STEEL, PRESS_IN_FULL).not_counted == (
+        "centre hole 10 mm (no tool of that size)",
+        "rim (left to blanking)",
+        "first tool (in the press already)",
+    )
+    assert made(NOTHING, {"tools": []}, STEEL, PRESS_IN_FULL).not_counted == (
+        "projections (no tool of that size)",
+        "centre hole 10 mm (no tool of that size)",
+        "rim (left to blanking)",
+    )
     assert made(NOTHING, {}, STEEL).not_counted == ()
+
+
+def test_every_tool_of_a_press_is_told_with_its_hits_and_their_force() -> None:
+    row = {"purpose": "drive", "shape": "slot", "radius_mm": 20, "count": 2, "width_mm": 4, "length_mm": 9}
+    blank = {"disc/shear_strength_n_per_mm2": 276, "disc/centre_hole_mm": 9, "disc/features": [row]}
+    disc = disc_of(movement_with(blank), [(1, 1.0), (2, 2.0), (3, 3.0)], PRESS_IN_FULL)
+
+    making = making_of(disc, plan_cuts(disc, title="Example", fingerprint="0123456789abcdef", not_good=None))
+
+    # F = L * 0.5 mm * 276 N/mm², and a tenth for stripping: 2 * 5 + 4 pi; 9 pi; 2 * 2.3 + 1.6 mm
+    forces_n = [138 * length_mm for length_mm in (10 + 4 * math.pi, 9 * math.pi, 6.2)]
+    assert [(work.tool, work.hit_count) for work in making.tools] == [("O94", 2), ("R9", 1), ("L12", 3)]
+    assert [work.hit_force_n for work in making.tools] == pytest.approx(forces_n)
+    assert [work.press_force_n for work in making.tools] == pytest.approx([1.1 * force_n for force_n in forces_n])
+    assert making.press_force_n == pytest.approx(1.1 * 138 * 9 * math.pi)
+    assert (making.hit_count, making.tool_change_count) == (6, 2)
+    # R9, L12 and their changes: 6 strikes of 0.3 s, two changes of 8 s
+    assert making.time_parts.hit_s == pytest.approx(1.8)
+    assert making.time_parts.tool_change_s == pytest.approx(16)
+    assert [(line.name, line.quantity) for line in making.price_lines if line.name == "hits"] == [("hits", Decimal(6))]
+
+
+def test_a_press_force_that_cannot_be_told_is_none_for_each_tool_and_the_disc() -> None:
+    disc = disc_of(movement_with({"disc/centre_hole_mm": 9}), [(1, 1.0)], PRESS)
+
+    making = making_of(disc, plan_cuts(disc, title="Example", fingerprint="0123456789abcdef", not_good=None))
+
+    assert [(work.tool, work.hit_force_n, work.press_force_n) for work in making.tools] == [
+        ("R9", None, None),
+        ("L12", None, None),
+    ]
+    assert making.press_force_n is None
+    assert "movement.disc.shear_strength_n_per_mm2" in making.not_stated
 
 
 def test_a_force_that_cannot_be_told_is_named_on_a_press_and_not_missed_on_a_laser() -> None:
@@ -339,6 +383,6 @@ def test_a_force_that_cannot_be_told_is_named_on_a_press_and_not_missed_on_a_las
     assert (soft.hit_force_n, soft.stripping_force_n) == (None, None)
     assert soft.not_stated == ("movement.disc.shear_strength_n_per_mm2", "cutter.rates")
     assert no_press.hit_force_n == pytest.approx(855.6)
-    assert no_press.stripping_force_n is None
+    assert (no_press.stripping_force_n, no_press.press_force_n) == (None, None)
     assert no_press.not_stated == ("cutter.press", "cutter.rates")
     assert (laser.hit_force_n, laser.not_stated) == (None, ("cutter.rates",))

@@ -9,7 +9,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from layout.mechanics.arrays import frozen_floats
-from layout.mechanics.drawn import DrawnCircle, DrawnLine, DrawnPoint, places_mm, reach_mm
+from layout.mechanics.drawn import DrawnArc, DrawnCircle, DrawnLine, DrawnPoint, places_mm, reach_mm
 
 STEPS = 20_000  # points of an arc; of radius r they come as near to the farthest as r·(π/STEPS)²/2
 
@@ -79,3 +79,16 @@ def test_the_quarters_of_a_circle_show_where_it_lies() -> None:
     circle = DrawnCircle(layer="RIM", centre_mm=frozen_floats([1, 2]), radius_mm=3)
 
     assert places_mm(circle).tolist() == [[4, 2], [1, 5], [-2, 2], [1, -1]]
+
+
+@given(places, st.floats(0.1, 100), st.floats(-720, 720), st.floats(-720, 720))
+def test_the_reach_and_the_places_of_an_arc_by_its_angles_are_those_of_its_points(
+    centre: tuple[float, float], radius_mm: float, from_deg: float, to_deg: float
+) -> None:
+    arc = DrawnArc(layer="RIM", centre_mm=frozen_floats(centre), radius_mm=radius_mm, from_deg=from_deg, to_deg=to_deg)
+    turned_deg = (to_deg - from_deg) % 360 or 360  # DXF reference: anticlockwise from the first
+    angle_rad = np.radians(from_deg + turned_deg * np.arange(STEPS + 1) / STEPS)
+    around = np.array(centre) + radius_mm * np.column_stack([np.cos(angle_rad), np.sin(angle_rad)])
+
+    assert reach_mm(arc) == pytest.approx(np.hypot(*around.T).max(), abs=1e-7 + radius_mm * (math.pi / STEPS) ** 2)
+    assert places_mm(arc) == pytest.approx(around[:: STEPS // 8], abs=1e-9)

@@ -7,7 +7,7 @@ from hypothesis import strategies as st
 
 from layout.mechanics.arrays import IntArray
 from layout.mechanics.hit_order import NO_STRIKE, _nearest_before, _Way, length, shortest_order
-from layout.mechanics.table import Table, table_moves, table_of
+from layout.mechanics.table import Table, forward_angles_rad, table_moves, table_of
 
 NOTHING_FIRST = np.zeros((0, 2), dtype=np.int64)
 places = st.lists(st.tuples(st.floats(20, 200), st.floats(0, 6.2)), max_size=14)
@@ -104,6 +104,28 @@ def test_a_table_without_backlash_comes_from_either_side() -> None:
 
     assert not moves.taken_up.any()
     assert math.degrees(moves.turned_rad) == pytest.approx(10 + 4)
+
+
+def test_an_exact_half_turn_goes_forward_whatever_its_last_bit() -> None:
+    moves = table_moves(np.array([0.0, np.nextafter(math.pi, 4), 0.0]), take_up_rad=DEGREE_RAD)
+
+    assert moves.taken_up.tolist() == [True, False, False]
+    np.testing.assert_allclose(moves.to_rad, [0, math.pi, 2 * math.pi])
+
+
+def test_a_strike_in_the_middle_takes_the_angle_of_the_next_that_has_one() -> None:
+    middle = (0.0, 0.0)
+    at_mm = np.array([middle, (0, 5), middle, middle, (-5, 0), middle])
+
+    forward_deg = np.degrees(forward_angles_rad(at_mm, 1))
+
+    np.testing.assert_allclose(forward_deg, [90, 90, 180, 180, 180, 180])
+    np.testing.assert_allclose(np.degrees(forward_angles_rad(at_mm, -1)), -forward_deg)
+
+
+@pytest.mark.parametrize("count", [0, 1, 2])
+def test_strikes_that_are_all_in_the_middle_have_no_angle(count: int) -> None:
+    assert forward_angles_rad(np.zeros((count, 2)), 1).tolist() == [0.0] * count
 
 
 @given(st.lists(st.floats(-20, 20), max_size=12))

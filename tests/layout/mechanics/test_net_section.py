@@ -120,6 +120,24 @@ def drilled(**feature: object) -> MetalLeft:
     return left_on(disc_of(movement_with({"disc/features": [row]}), [(1, 10.0), (2, 10.0)], PRESS))
 
 
+@pytest.mark.parametrize("cutter", [LASER, PRESS], ids=["laser", "press"])
+@pytest.mark.parametrize("turns", ["clockwise", "anticlockwise"])
+@pytest.mark.parametrize("just_rad", [-0.001, 0.001])
+def test_the_weakest_line_is_found_just_before_and_just_after_the_start_of_the_turn(
+    cutter: Cutter, turns: str, just_rad: float
+) -> None:
+    # Three openings near one ray; which of its sides they lie on depends on the way the disc turns.
+    disc = disc_of(movement_with({"turns": turns}), [(1, 10.0), (2, 10.3), (3, 10.5)], cutter)
+    weakest = left_on(disc)
+
+    edges_rad = (disc.edge_angle_rad - weakest.line_angle_rad + just_rad) % FULL_TURN_RAD
+    turned = left_on(replace(disc, edge_angle_rad=edges_rad))
+
+    assert turned.line_mm == pytest.approx(weakest.line_mm, abs=LINE_GRAIN_MM)
+    off_rad = (turned.line_angle_rad - just_rad + math.pi) % FULL_TURN_RAD - math.pi
+    assert off_rad == pytest.approx(0.0, abs=1e-4)
+
+
 def test_a_hole_of_the_blank_in_the_band_is_missing_too() -> None:
     left = drilled(shape="hole", radius_mm=55, width_mm=4, length_mm=4)
 

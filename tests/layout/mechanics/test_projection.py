@@ -256,3 +256,15 @@ def test_the_frame_puts_u_along_the_travel_for_both_directions() -> None:
 def test_a_factor_below_the_table_is_clamped_and_never_shortens_the_bend() -> None:
     assert neutral_fibre_factor(0.01, 1.0) == 0.0
     assert bend_allowance_mm(0.01, 1.0) == pytest.approx(math.pi / 2 * 0.01)
+
+
+def test_standing_metal_reaches_as_far_behind_the_working_edge_as_leg_and_bend_are_thick() -> None:
+    # Fernhollow: 0.5 mm sheet, folded round 0.4 mm. Behind its fold the leg alone trails the edge, its bend lies ahead;
+    # ahead of it leg and bend do, 0.5 + 0.4 mm. A lance stands like the former, a slot does not stand.
+    behind, ahead = (
+        pattern_of(FERNHOLLOW, cutter_with({"fold/fold_side": side})).body_behind_mm for side in ("behind", "ahead")
+    )
+
+    assert (behind, ahead) == pytest.approx((0.5, 0.9))
+    assert pattern_of(FERNHOLLOW, PRESS).body_behind_mm == 0.5
+    assert pattern_of(TARNLIGHT, LASER).body_behind_mm == 0.0

@@ -73,6 +73,16 @@ def test_a_slot_is_sheared_all_round() -> None:
     assert sheared_length_mm(tool_with(makes="slot", length_mm=2.2, width_mm=1.3)) == pytest.approx(1.8 + math.pi * 1.3)
 
 
+@pytest.mark.parametrize(("length_mm", "width_mm"), [(9, 4), (4, 9)])
+def test_a_long_hole_is_sheared_all_round_whichever_way_it_lies(length_mm: float, width_mm: float) -> None:
+    tool = Tool.model_validate(
+        {"tool": "O1", "title": "a tool", "makes": "hole"}
+        | {"footprint_length_mm": length_mm, "footprint_width_mm": width_mm}
+    )
+
+    assert sheared_length_mm(tool) == pytest.approx(2 * 5 + math.pi * 4)
+
+
 def test_a_round_slot_is_a_hole() -> None:
     # 10 mm across in 0.8 mm at 345 N/mm²: 8670.8 N; at 276: 6936.6 N
     length_mm = sheared_length_mm(tool_with(makes="slot", length_mm=10, width_mm=10))

@@ -40,6 +40,13 @@ def test_the_damper_sets_the_repeat_where_it_is_slow() -> None:
     assert spacing(movement).least_rad == pytest.approx([math.radians(12)] * 3)
 
 
+def test_the_damper_is_judged_at_the_fastest_turn() -> None:
+    movement = movement_with({"damper_recovery_s": 2.0, "fastest_revolution_s": 48})
+
+    # 2 s of a 48 s turn: 15 degrees, though the stated turn of 60 s would ask for 12
+    assert spacing(movement).damper_rad == pytest.approx([math.radians(15)] * 3)
+
+
 def test_an_undamped_tooth_has_no_damper_to_wait_for() -> None:
     movement = movement_with({"damper_recovery_s": 2.0, "teeth/0/damped": False})
 

@@ -58,7 +58,7 @@ def test_a_turning_disc_brings_the_edge_to_its_release_at_its_moment(movement: M
 
         def edge(time_s: float, alpha: float = alpha, radius_mm: float = radius_mm, sign: int = sign) -> complex:
             turned = math.radians(movement.before_music_deg) + 2 * math.pi * time_s / movement.revolution_s
-            return complex(math.cos(alpha), math.sin(alpha)) * np.exp(-1j * sign * turned) * radius_mm
+            return radius_mm * complex(math.cos(alpha), math.sin(alpha)) * complex(np.exp(-1j * sign * turned))
 
         early, late = sounds_s - 0.5, sounds_s + 0.5
         assert edge(sounds_s).real > 0
@@ -118,3 +118,13 @@ def test_measured_arcs_of_a_track_win_over_the_wheel() -> None:
     # 2 * 3.2 * sin 30 deg = 3.2 mm on the others
     np.testing.assert_allclose(turning.engagement_arc_mm, [3.2, 3.3, 3.2])
     np.testing.assert_allclose(turning.release_arc_mm, [0, 0.2, 0])
+
+
+def test_an_edge_in_the_rest_sector_sounds_just_before_the_music_or_just_after_it() -> None:
+    turning = turning_of(movement_with({"before_music_deg": 30, "after_music_deg": 30}))
+    # 60 degrees of rest, 6 a second: the music lasts 50 s, and half of the rest, 5 s, counts to either end of it.
+    asked_s = np.array([-4.9, -0.5, 0.0, 50.0, 50.5, 54.9])
+    track = np.zeros(6, dtype=np.int64)
+
+    assert turning.free_turn_s == pytest.approx(50.0)
+    assert turning.sounds_s(turning.edge_angle_rad(asked_s, track), track) == pytest.approx(asked_s, abs=1e-9)

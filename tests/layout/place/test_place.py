@@ -1,8 +1,10 @@
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
+from layout.documents import Movement
 from layout.place import place
 from layout.play import play
 from tests.layout.examples import LASER, PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
@@ -25,13 +27,26 @@ def test_no_plucks_give_a_disc_without_projections() -> None:
     assert len(play(disc).sounds_s) == 0
 
 
+def test_the_metal_left_of_a_disc_is_worked_out_once_and_of_another_disc_anew() -> None:
+    one = disc_of(PLAIN, [(1, 1.0), (3, 20.0)])
+    other = replace(one, edge_angle_rad=np.zeros(2))
+
+    assert one.metal_left is one.metal_left
+    assert one.metal_left is not None
+    assert other.metal_left is not None
+    # Both openings on one line leave less of it than one alone, and as much of the rings.
+    assert other.metal_left.line_mm < one.metal_left.line_mm - 1
+    assert other.metal_left.ring_mm == pytest.approx(one.metal_left.ring_mm, abs=1e-4)
+    assert disc_of(PLAIN, []).metal_left is None
+
+
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
-def test_moving_one_note_moves_one_projection_and_nothing_else(movement: object) -> None:
+def test_moving_one_note_moves_one_projection_and_nothing_else(movement: Movement) -> None:
     plucks = [(1, 2.0), (5, 2.0), (9, 11.5), (17, 30.0)]
     moved = [(1, 2.0), (5, 2.0), (9, 11.75), (17, 30.0)]
 
-    before = place(arrangement_of(plucks), movement, LASER)  # type: ignore[arg-type] - parametrised movements
-    after = place(arrangement_of(moved), movement, LASER)  # type: ignore[arg-type] - parametrised movements
+    before = place(arrangement_of(plucks), movement, LASER)
+    after = place(arrangement_of(moved), movement, LASER)
 
     turned = np.angle(np.exp(1j * (after.edge_angle_rad - before.edge_angle_rad)))
     expected = after.turning.direction * 2 * math.pi * 0.25 / after.movement.revolution_s

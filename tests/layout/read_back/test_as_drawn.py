@@ -10,8 +10,9 @@ from ezdxf.document import Drawing
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from layout.documents.cutter import Layer
 from layout.errors import DrawingReadError
-from layout.mechanics.drawn import DrawnCircle, DrawnDisc, DrawnLine, DrawnPoint
+from layout.mechanics.drawn import DrawnArc, DrawnCircle, DrawnDisc, DrawnLine, DrawnPoint
 from layout.read_back.as_drawn import read_as_drawn
 from layout.read_back.limits import MOST_MIB
 from tests.layout.examples import PRESS, movement_with
@@ -51,6 +52,9 @@ def told(drawn: DrawnDisc) -> list[Entity]:
         match each:
             case DrawnCircle():
                 found.append((each.layer, "circle", [(*each.centre_mm.tolist(), each.radius_mm)]))
+            case DrawnArc():
+                circle = (*each.centre_mm.tolist(), each.radius_mm)
+                found.append((each.layer, "arc", [circle, (each.from_deg, each.to_deg)]))
             case DrawnPoint():
                 found.append((each.layer, "point", [(*each.at_mm.tolist(), 0.0)]))
             case DrawnLine():
@@ -76,6 +80,40 @@ def changed(change: Callable[[Drawing], object], dxf: bytes = GOOD) -> bytes:
 )
 def test_every_entity_is_read_as_another_library_reads_it_and_in_its_order(dxf: bytes) -> None:
     assert told(read_as_drawn(dxf)) == entities_of(dxf)
+
+
+def exploded(document: Drawing) -> None:
+    """Every polyline in its lines and arcs, as programs for old controls write them; the order stays."""
+    space = document.modelspace()
+    for entity in list(space):
+        if entity.dxftype() in ("LWPOLYLINE", "POLYLINE"):
+            for part in list(entity.virtual_entities()):  # type: ignore[attr-defined]
+                part.dxf.layer = entity.dxf.layer
+                space.add_entity(part)
+        else:
+            space.unlink_entity(entity)
+            space.add_entity(entity)
+    for entity in list(space):
+        if entity.dxftype() in ("LWPOLYLINE", "POLYLINE"):
+            space.delete_entity(entity)
+
+
+@pytest.mark.parametrize("dxf", [disc_dxf(movement=NOTCHED), R12], ids=["R2010", "R12"])
+def test_a_disc_in_lines_and_arcs_is_read_as_another_library_reads_it(dxf: bytes) -> None:
+    taken_apart = changed(exploded, dxf)
+
+    drawn = read_as_drawn(taken_apart)
+
+    assert told(drawn) == entities_of(taken_apart)
+    assert {kind for _, kind, _ in told(drawn)} >= ({"arc", "open"} if dxf is not R12 else {"open"})
+    assert drawn.rim_diameter_mm == pytest.approx(RIM_MM, abs=5e-6)
+
+
+def test_layers_of_the_cutters_own_are_read_as_ours() -> None:
+    own = {"SLITS": {"name": "CUT-INNER", "colour": 1}, "RIM": {"name": "0", "colour": 7}}
+    layers = {name: Layer(**layer) for name, layer in own.items()}
+
+    assert told(read_as_drawn(disc_dxf(laser(layers=own)), layers)) == told(read_as_drawn(GOOD))
 
 
 def test_the_head_tells_whose_disc_it_is_and_how_it_is_drawn() -> None:
@@ -173,13 +211,23 @@ def in_inches(document: Drawing) -> None:
         (
             disc_dxf(laser(layers={"SLITS": {"name": "CUT-INNER", "colour": 1}})),
             "layer 'CUT-INNER' is none of SLITS, SLOTS, HITS, HOLES, RIM, LEADS, MARKS, which alone can be placed; "
-            "where a cutter gives layers names of its own, draw the disc with a cutter that keeps ours",
+            "where the cutter gives layers names of its own, state its layers in the job",
         ),
         (changed(add("0", "add_point", (0, 0))), "layer '0' is none of SLITS, "),
         (
-            changed(add("SLITS", "add_arc", (0, 0), 50, 0, 90)),
-            "layer SLITS has an entity of type ARC that is of another kind; placed are LWPOLYLINE, POLYLINE, CIRCLE, "
-            "POINT and LINE, flat and seen from above; use disc.dxf as it was written",
+            changed(add("SLITS", "add_ellipse", (0, 0), (50, 0), 0.5)),
+            "layer SLITS has an entity of type ELLIPSE that is of another kind; placed are LWPOLYLINE, POLYLINE, "
+            "CIRCLE, ARC, POINT and LINE, flat and seen from above; use disc.dxf as it was written",
+        ),
+        (
+            changed(add("SLITS", "add_arc", (0, 0), 50, 0, 1e300)),
+            r"layer SLITS has an arc from 0 to 1e\+300 degrees, allowed are angles within 720",
+        ),
+        (changed(add("SLITS", "add_arc", (0, 0), 50, float("nan"), 90)), "has an arc from nan to 90 degrees"),
+        (changed(add("SLITS", "add_arc", (0, 0), -1, 0, 90)), "layer SLITS has a circle of radius -1 mm"),
+        (
+            changed(add("SLITS", "add_arc", (100, 0), 30, -10, 10)),
+            "SLITS reaches 130.000 mm from the centre, outside the rim at 120.000 mm",
         ),
         (changed(add("MARKS", "add_text", "hello")), "layer MARKS has an entity of type TEXT"),
         (

@@ -396,6 +396,18 @@ def test_a_hole_drawn_twice_is_told() -> None:
     assert finding.message == "the centre hole is drawn twice"
 
 
+def test_a_second_hole_that_reaches_as_far_to_one_side_is_not_the_first_drawn_twice() -> None:
+    document = disc_document(TWO)
+    [hole] = cuts(document, "HOLES")
+    radius = hole.dxf.radius
+    document.modelspace().add_circle((radius / 2, 0), radius / 2, dxfattribs={"layer": "HOLES"})
+
+    finding = only(read(document))
+
+    assert finding.code is Code.UNKNOWN_CUT
+    assert finding.message.startswith("the drawing has a hole the movement does not have, around")
+
+
 def test_the_wrong_movement_is_seen_from_the_cuts_alone() -> None:
     document = disc_document(random_disc(SHIPPED[0], LASER, count=30))
 

@@ -21,6 +21,7 @@ from layout import walk
 from layout.arrange.arrangement import NO_NOTE
 from layout.arrange.loading import greatest_load
 from layout.documents import Cutter, Movement, read_settings, shipped_movement
+from layout.documents.movement import StarWheel
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.mechanics.projection import Pattern
 from layout.place import place
@@ -330,6 +331,25 @@ def assert_drive_right(drive: Json, layout: Json, movement: Movement) -> None:
     assert drive["revolution"] == {"stated_s": movement.revolution_s, "by_brake_and_train_s": by_train_s}
 
 
+def assert_depth_right(depth: dict[str, Any] | None, movement: Movement, cutter: Cutter) -> None:
+    """The band of the depth by its sums, and the two ends of the flatness that these movements are near."""
+    projection, wheel = movement.projection, movement.star_wheel
+    if projection.depth_mm is None:
+        assert depth is None
+        return
+    assert depth is not None
+    assert isinstance(wheel, StarWheel)
+    spread_mm = projection.depth_plus_minus_mm + movement.disc.flatness_mm
+    assert (depth["least_mm"], depth["most_mm"]) == pytest.approx(
+        (projection.depth_mm - spread_mm, projection.depth_mm + spread_mm), abs=1e-9
+    )
+    half_step_mm = wheel.tip_radius_mm * math.cos(math.pi / wheel.points)
+    rooms_mm = [projection.depth_mm - projection.depth_plus_minus_mm - wheel.axis_depth_mm + half_step_mm]
+    if cutter.fold is not None:
+        rooms_mm.append(wheel.axis_depth_mm - wheel.tip_radius_mm - cutter.fold.inside_radius_mm)
+    assert depth["flatness_limit_mm"] == pytest.approx(min(rooms_mm), abs=1e-6)
+
+
 def assert_counted_right(laid_out: LaidOut) -> None:
     """Every number of the report against layout.json and the documents."""
     layout = json.loads(json.dumps(layout_record(laid_out, despite_findings=None)))
@@ -351,6 +371,7 @@ def assert_counted_right(laid_out: LaidOut) -> None:
     assert report["extra_pluck_count"] == sum("again_of" in place for place in layout["projections"])
     assert report["tracks"] == tracks_of(layout, movement, cutter)
     assert_metal_right(report["net_section"], layout, movement, laid_out.disc.pattern)
+    assert_depth_right(report["depth"], movement, cutter)
     assert (report["load"] is None) == (report["no_load_because"] is not None)
     if report["load"]:
         assert_load_right(report["load"], layout, movement)

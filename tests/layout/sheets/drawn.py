@@ -58,6 +58,12 @@ def entities_of(dxf: bytes, x_mm: float = 0.0, y_mm: float = 0.0) -> list[Entity
             case "CIRCLE":
                 centre = entity.dxf.center
                 found.append((layer, "circle", [(centre.x + x_mm, centre.y + y_mm, entity.dxf.radius)]))
+            case "ARC":
+                centre, ends = entity.dxf.center, (entity.dxf.start_angle, entity.dxf.end_angle)
+                found.append((layer, "arc", [(centre.x + x_mm, centre.y + y_mm, entity.dxf.radius), ends]))
+            case "LINE":
+                ends = [(at.x + x_mm, at.y + y_mm, 0.0) for at in (entity.dxf.start, entity.dxf.end)]
+                found.append((layer, "open", ends))
             case "POINT":
                 place = entity.dxf.location
                 found.append((layer, "point", [(place.x + x_mm, place.y + y_mm, 0.0)]))
@@ -76,7 +82,7 @@ def entities_of(dxf: bytes, x_mm: float = 0.0, y_mm: float = 0.0) -> list[Entity
 
 def job_for(quantity: int = 3, *, stock: list[dict[str, Any]] | None = None, **more: Any) -> SheetJob:
     """A job for discs called d1, of the plain movement; two lie on a sheet."""
-    plain = {"gap_mm": 6, "margin_mm": 5, "title": "Spring batch"}
+    plain = {"gap_mm": 6, "margin_mm": 5, "title": "Spring batch", "labels": False}
     sheets = stock or [{"width_mm": 530, "height_mm": 260, "quantity": 2}]
     return job_of(sheets, [(RIM_MM, quantity)], **plain | more)
 

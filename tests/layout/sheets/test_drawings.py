@@ -9,7 +9,7 @@ from layout.errors import DocumentError
 from layout.sheet_walk import plan_sheets
 from tests.layout.examples import movement_with
 from tests.layout.sheets.drawn import LED_IN, RIM_MM, disc_dxf, entities_of, job_for, laser, sheet_files
-from tests.layout.sheets.jobs import job_of, sheet
+from tests.layout.sheets.jobs import discs_of_plan, faults_of, job_of, sheet
 
 GOOD, WITH_LEADS = disc_dxf(), disc_dxf(LED_IN)
 COMPENSATED = disc_dxf(laser(kerf_compensated=True))
@@ -142,7 +142,30 @@ def test_a_job_with_other_drawings_has_another_fingerprint() -> None:
     assert plan_sheets(job_for(1), {}).fingerprint == plain
 
 
-def test_a_compensated_rim_is_asked_for_as_it_is_drawn() -> None:
-    # 240 mm finished, and half a kerf of 0.12 mm more on either side
-    with pytest.raises(DocumentError, match=r"is 240.120 mm in diameter \(compensated: the job must say 240.12\)"):
-        plan_sheets(job_of([sheet(300, 300)], [(RIM_MM, 1)]), {"d1": COMPENSATED})
+@pytest.mark.parametrize("diameter_mm", [240, 240.009, 240.12, 240.111])
+def test_a_compensated_disc_is_asked_for_as_finished_or_as_drawn_and_takes_up_what_is_cut(diameter_mm: float) -> None:
+    # 240 mm finished, and half a kerf of 0.12 mm more on either side: two with a gap of 1 mm take up 481.24 mm
+    rules = {"gap_mm": 1, "margin_mm": 0}
+    fits, tight = (job_of([sheet(wide, 240.1201)], [(diameter_mm, 2)], **rules) for wide in (481.241, 481.239))
+
+    plan = plan_sheets(fits, {"d1": COMPENSATED})
+
+    assert plan.complete
+    assert faults_of([(x, y, 120.06) for x, y, _ in discs_of_plan(plan, 1)], fits.stock[0], fits) == []
+    assert [kind.missing_count for kind in plan_sheets(tight, {"d1": COMPENSATED}).kinds] == [1]
+
+
+@pytest.mark.parametrize("diameter_mm", [239.98, 240.06, 240.14])
+def test_a_compensated_rim_that_is_neither_is_told_with_both(diameter_mm: float) -> None:
+    with pytest.raises(
+        DocumentError, match=r"is 240\.120 mm in diameter \(compensated, 240\.000 nominal\), the job says"
+    ):
+        plan_sheets(job_of([sheet(300, 300)], [(diameter_mm, 1)]), {"d1": COMPENSATED})
+
+
+def test_a_rim_a_little_larger_than_asked_for_takes_up_what_is_drawn() -> None:
+    # 239.991 mm are asked for and 240 drawn, within the 0.01 mm allowed: what is cut needs 480 mm
+    job = job_of([sheet(479.99, 240)], [(239.991, 2)])
+
+    assert [kind.placed_count for kind in plan_sheets(job, {"d1": GOOD}).kinds] == [1]
+    assert plan_sheets(job).complete

@@ -17,7 +17,8 @@ from shapely.geometry.base import BaseGeometry
 from layout.documents import Cutter, Movement, shipped_cutter, shipped_movement
 from layout.mechanics.arrays import FloatArray
 from layout.mechanics.projection import fitting_tool
-from layout.trial import TrialPiece, trial_piece
+from layout.trial import TrialPiece
+from layout.trial_walk import plan_trial
 from layout.write import write_dxf
 
 CHORD_MM = 1e-5  # how far a chord may lie inside its arc
@@ -44,7 +45,7 @@ def shipped_piece(movement_id: str, cutter_id: str) -> tuple[TrialPiece, Read]:
 
 
 def read_piece(movement: Movement, cutter: Cutter) -> tuple[TrialPiece, Read]:
-    piece = trial_piece(movement, cutter)
+    piece = plan_trial(movement, cutter)
     return piece, read_dxf(write_dxf(piece.drawing, cutter), movement, cutter)
 
 
@@ -86,25 +87,17 @@ def read_dxf(dxf: bytes, movement: Movement, cutter: Cutter) -> Read:
 
 
 def struck(hits_mm: FloatArray, movement: Movement, cutter: Cutter) -> list[BaseGeometry]:
-    """What a press's tool takes out: its footprint round every strike, along the travel there.
-
-    Projections of a disc are struck edge_ahead_mm behind their working edge, along the edge's own travel.
-    """
+    """What a press's tool takes out: its footprint round every strike, square to the radius there."""
     tool = fitting_tool(movement, cutter)
     assert tool is not None
     half_u, half_v = tool.footprint_length_mm / 2, tool.footprint_width_mm / 2
     found: list[BaseGeometry] = []
-    for place, (x, y) in enumerate(hits_mm):
+    for x, y in hits_mm.tolist():
         if tool.makes == "slot":
             core = shapely.LineString([(0, half_v - half_u), (0, half_u - half_v)]).buffer(half_v, quad_segs=256)
         else:
             core = shapely.box(-half_v, -half_u, half_v, half_u)
-        lean_rad = 0.0
-        if place < len(movement.tracks):
-            mirror = -1 if cutter.drawn_from == "star-side" else 1
-            travel = -mirror * (1 if movement.turns == "clockwise" else -1)  # +1: anticlockwise as drawn
-            lean_rad = travel * math.atan2(tool.edge_ahead_mm, movement.tracks[place].radius_mm)
-        turned = affinity.rotate(core, math.atan2(y, x) + lean_rad, origin=(0, 0), use_radians=True)
+        turned = affinity.rotate(core, math.atan2(y, x), origin=(0, 0), use_radians=True)
         found.append(affinity.translate(turned, x, y))
     return found
 
@@ -128,3 +121,14 @@ def size_mm(shape: BaseGeometry) -> tuple[float, float]:
     """Across the travel and along it."""
     low_x, low_y, high_x, high_y = level(shape).bounds
     return high_x - low_x, high_y - low_y
+
+
+def of_tracks(found: list[FloatArray], expected: FloatArray) -> list[FloatArray]:
+    """Of everything found, for each outline or point expected the one as far from the centre in every vertex."""
+    return [
+        min(
+            (one for one in found if one.shape == wanted.shape),
+            key=lambda one: float(np.abs(np.hypot(*one.T) - np.hypot(*wanted.T)).max()),
+        )
+        for wanted in expected
+    ]

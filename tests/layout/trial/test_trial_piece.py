@@ -1,6 +1,5 @@
 import itertools
 import math
-import re
 from typing import Any
 
 import numpy as np
@@ -17,10 +16,9 @@ from layout.mechanics.lettering import strokes_mm
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
 from layout.trial import trial_piece
-from layout.trial.wording import depth_slope, depth_words, track_words
 from layout.write import write_dxf
 from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, disc_of, movement_with
-from tests.layout.trial.reading import Read, at_mark, read_dxf, read_piece, shipped_piece, size_mm
+from tests.layout.trial.reading import Read, at_mark, of_tracks, read_dxf, read_piece, shipped_piece, size_mm
 
 FERNHOLLOW, MOSSBROOK, TARNLIGHT = SHIPPED
 GRAIN_MM = 2e-5  # what chords for arcs and six decimals leave
@@ -71,14 +69,10 @@ def test_everything_lies_inside_the_outline_which_is_closed_and_last(movement: M
 def test_what_is_cut_comes_in_the_order_of_a_disc(movement: Movement, cutter: Cutter) -> None:
     _, read = shipped_piece(movement.id, cutter.id)
 
-    order = [layer for layer, _ in itertools.groupby(read.layers)]
-    cut = {
-        ("laser", "standing"): ["SLITS", "SLOTS", "SLITS", "HOLES"],  # tracks, web and kerf, width and depth
-        ("laser", "slot"): ["SLOTS", "HOLES"],
-        ("punch-press", "standing"): ["HOLES", "HITS"],  # formed hits last
-        ("punch-press", "slot"): ["HITS", "HOLES"],
-    }[cutter.kind, movement.projection.kind]
-    assert order == ["MARKS", *cut, "RIM"]
+    openings = {"SLITS", "SLOTS", "HITS"}
+    order = [what for what, _ in itertools.groupby("openings" if one in openings else one for one in read.layers)]
+    hits_last = cutter.kind == "punch-press"
+    assert order == ["MARKS", *(["HOLES", "openings"] if hits_last else ["openings", "HOLES"]), "RIM"]
 
 
 @pytest.mark.parametrize(("movement", "cutter"), EVERY)
@@ -97,12 +91,12 @@ def test_each_track_has_one_projection_in_the_pattern_of_a_disc(movement: Moveme
     _, read = shipped_piece(movement.id, cutter.id)
     pattern, turning = pattern_of(movement, cutter), turning_of(movement)
     flat_mm = np.array([[pattern.strike_u_mm, 0.0]]) if pattern.cut is None else pattern.cut.points_mm
-    found = read.hits_mm[:, None, :] if pattern.cut is None else read.vertices
+    found = list(read.hits_mm[:, None, :]) if pattern.cut is None else read.vertices
     placed = turning.radius_mm, np.zeros(len(turning.radius_mm)), turning.direction
     at_zero = on_disc_mm(flat_mm, *placed, pattern.strike_u_mm)
 
-    for place, expected in enumerate(at_zero):
-        points = label_side_mm(np.asarray(found[place]), cutter)
+    for one, expected in zip(of_tracks(found, at_zero), at_zero, strict=True):
+        points = label_side_mm(one, cutter)
         ratio = (points @ [1, 1j]) / (expected @ [1, 1j])
         # One turn about the centre carries the one into the other: no mirroring, no stretching.
         assert np.abs(ratio) == pytest.approx(1.0, abs=1e-7)
@@ -113,9 +107,11 @@ def test_each_track_has_one_projection_in_the_pattern_of_a_disc(movement: Moveme
 def test_the_projections_pluck_one_after_the_other_and_before_the_line(movement: Movement, cutter: Cutter) -> None:
     _, read = shipped_piece(movement.id, cutter.id)
     pattern, turning = pattern_of(movement, cutter), turning_of(movement)
-    count = len(movement.tracks)
-    shapes = read.hits_mm[:count] if pattern.cut is None else np.array([v.mean(axis=0) for v in read.vertices[:count]])
-    x, y = label_side_mm(shapes, cutter).T
+    flat_mm = np.array([[pattern.strike_u_mm, 0.0]]) if pattern.cut is None else pattern.cut.points_mm
+    placed = turning.radius_mm, np.zeros(len(turning.radius_mm)), turning.direction
+    found = list(read.hits_mm[:, None, :]) if pattern.cut is None else read.vertices
+    ones = of_tracks(found, on_disc_mm(flat_mm, *placed, pattern.strike_u_mm))
+    x, y = label_side_mm(np.array([one.mean(axis=0) for one in ones]), cutter).T
     # The middle of the shape stands as far before or behind the edge on every track, in mm; that angle goes.
     behind_mm = pattern.strike_u_mm if pattern.cut is None else float(pattern.cut.points_mm[:, 0].mean())
     edge_rad = np.arctan2(y, x) + turning.direction * np.arctan2(behind_mm, turning.radius_mm)
@@ -332,30 +328,6 @@ def test_a_cutter_that_cannot_make_the_projections_is_refused(movement: Movement
     assert refused.value.document == "cutter"
 
 
-def test_how_the_inside_radius_is_corrected_gives_back_a_radius_that_was_off() -> None:
-    # A shop states 0.40 mm and really bends to 0.42 mm. From L = a(r) + p - r with DIN 6935 by hand:
-    def taken(radius: float) -> float:
-        return math.pi / 2 * (radius + (0.65 + 0.5 * math.log10(radius / 0.5)) * 0.25) - radius
-
-    deeper_mm = taken(0.40) - taken(0.42)  # the tab comes out shallower, so this is below zero
-
-    corrected_mm = 0.40 - deeper_mm / depth_slope(0.40, 0.5)
-
-    assert corrected_mm == pytest.approx(0.42, abs=0.0005)
-    # and so does the formula as it is printed
-    fold = cutter_with({"fold/inside_radius_mm": 0.4}).fold
-    assert fold is not None
-    [(stated, sign, slope)] = re.findall(
-        r"fold\.inside_radius_mm = ([\d.]+) ([+-]) e / ([\d.]+)\.", depth_words(fold, 0.5)
-    )
-    assert float(stated) + (1 if sign == "+" else -1) * deeper_mm / float(slope) == pytest.approx(0.42, abs=0.0006)
-
-
-def test_a_track_is_corrected_outwards_where_its_wheel_lies_outside() -> None:
-    # A wheel whose middle lies outside the projection's stands on a larger circle than the document says.
-    assert "radius_mm = nominal + how far the wheel's middle lies outside the projection's middle" in track_words()
-
-
 def test_open_slits_are_said_to_be_as_wide_as_the_kerf() -> None:
     fold = {"inside_radius_mm": 0.4, "fold_side": "behind", "relief_mm": 0.3, "slit": "centre-line"}
     cutter = cutter_with({"fold": fold})
@@ -448,3 +420,20 @@ def test_the_outer_corners_are_round_and_run_smoothly_into_rim_and_sides() -> No
         assert abs(start[0] * end[1] - start[1] * end[0]) < 1e-6
         line = shapely.LineString([start, end])
         assert min(line.distance(shapely.Point(centre.x, centre.y)) for centre, _ in corners) == pytest.approx(3.0)
+
+
+def test_a_cutter_without_labels_leaves_the_marks_by_which_the_piece_is_measured_and_turned() -> None:
+    plain, lettered = read_piece(FERNHOLLOW, LASER)
+    piece, read = read_piece(FERNHOLLOW, cutter_with({"labels": False}))
+
+    gone = {"TRIAL PIECE", "FERNHOLLOW-31 REV 1", "FIBRE-LASER", "LABEL SIDE"}
+    assert set(lettered.letters) - set(read.letters) == gone
+    marks = {step.mark for ladder in piece.ladders for step in ladder.steps}
+    assert marks | {"STOP"} == set(read.letters)
+    assert plain.ladders == piece.ladders
+    assert [(left.what, left.why) for left in piece.not_tried] == [
+        (
+            "lettering of what the piece is",
+            "the cutter states labels false; STOP and the numbers stay, by which the piece is turned and measured",
+        )
+    ]

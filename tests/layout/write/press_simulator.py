@@ -45,12 +45,16 @@ class DryPress:
     table_deg: float = 0.0
     turned: int = -1
     greatest_turn_deg: float = 0.0
+    turned_deg: float = 0.0  # since the first strike, both ways counted
+    slid_mm: float = 0.0  # the same
+    tools_taken_up: int = 0
     stops: int = 0
     _chosen: int | None = None
     _tool: int | None = None
     _millimetres: bool = False
     _absolute: bool = False
     _ended: bool = False
+    _moved: bool = False
     _last_number: int = 0
 
     def run(self, program: bytes) -> list[Strike]:
@@ -99,18 +103,24 @@ class DryPress:
             if self._chosen is None:
                 raise Alarm("M6 without a tool chosen")
             self._tool = self._chosen
+            self.tools_taken_up += 1
         if moves or "G0" in said:
             self._move(moves, at_once="G0" in said)
 
     def _move(self, moves: dict[str, float], *, at_once: bool) -> None:
         if not at_once or not (self._millimetres and self._absolute):
             raise Alarm("a move without G0, millimetres and G90 before it")
+        slid_mm = abs(moves.get("X", self.slide_mm) - self.slide_mm)
         self.slide_mm = moves.get("X", self.slide_mm)
         turn_deg = moves.get("C", self.table_deg) - self.table_deg
-        self.greatest_turn_deg = max(self.greatest_turn_deg, abs(turn_deg)) if self.strikes else 0.0
+        if self._moved:  # the first move starts from wherever the table stands
+            self.greatest_turn_deg = max(self.greatest_turn_deg, abs(turn_deg))
+        self._moved = True
+        if self.strikes:
+            self.turned_deg, self.slid_mm = self.turned_deg + abs(turn_deg), self.slid_mm + slid_mm
         if turn_deg:
             self.turned = 1 if turn_deg > 0 else -1
-        self.table_deg += turn_deg
+        self.table_deg = moves.get("C", self.table_deg)
 
     def _strike(self) -> None:
         if self._tool is None:

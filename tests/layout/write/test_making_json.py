@@ -4,14 +4,24 @@ import json
 import math
 from decimal import Decimal
 
-from layout.making.making import Making, PriceLine, TimeParts
+from layout.making.making import Making, PriceLine, TimeParts, ToolWork
 from layout.version import ENGINE_VERSION
 from layout.write.making_json import write_making
 
 FINGERPRINT = "0123456789abcdef"
 FIELDS = [
-    *("format", "fingerprint", "engine_version", "cut_length_mm", "mark_length_mm", "rapid_length_mm"),
-    *("pierce_count", "hit_count", "hit_force_n", "stripping_force_n", "fold_to_deg", "blank_mass_kg", "disc_mass_kg"),
+    *(
+        "format",
+        "fingerprint",
+        "engine_version",
+        "disc",
+        "order_number",
+        "cut_length_mm",
+        "mark_length_mm",
+        "rapid_length_mm",
+    ),
+    *("pierce_count", "hit_count", "hit_force_n", "stripping_force_n", "press_force_n", "tool_change_count", "tools"),
+    *("fold_to_deg", "blank_mass_kg", "disc_mass_kg"),
     *("time_s", "time_parts", "currency", "currency_decimals", "price_lines", "total", "not_stated", "not_counted"),
 ]
 PRICED = Making(
@@ -52,6 +62,29 @@ def test_the_fields_stand_in_their_order_with_what_the_making_holds() -> None:
     assert record["not_counted"] == ["rim"]
 
 
+def test_a_making_says_which_disc_of_a_set_it_is_and_for_which_order() -> None:
+    alone = json.loads(write_making(Making(), FINGERPRINT))
+    second = json.loads(write_making(Making(), FINGERPRINT, disc=(2, 3), order_number="2026-118"))
+
+    assert (alone["disc"], alone["order_number"]) == ({"number": 1, "of": 1}, None)
+    assert (second["disc"], second["order_number"]) == ({"number": 2, "of": 3}, "2026-118")
+
+
+def test_every_tool_is_a_line_with_its_strikes_and_forces() -> None:
+    works = (
+        ToolWork(tool="R9", hit_count=1, hit_force_n=3901.8578, press_force_n=4682.2293641),
+        ToolWork(tool="L12", hit_count=359, hit_force_n=None, press_force_n=None),
+    )
+
+    record = json.loads(write_making(Making(tools=works, tool_change_count=1, press_force_n=4682.2293641), FINGERPRINT))
+
+    assert record["tools"] == [
+        {"tool": "R9", "hit_count": 1, "hit_force_n": 3901.8578, "press_force_n": 4682.229364},
+        {"tool": "L12", "hit_count": 359, "hit_force_n": None, "press_force_n": None},
+    ]
+    assert (record["tool_change_count"], record["press_force_n"]) == (1, 4682.229364)
+
+
 def test_amounts_are_decimal_text_whose_sum_is_the_total() -> None:
     record = json.loads(write_making(PRICED, FINGERPRINT))
 
@@ -76,5 +109,5 @@ def test_a_making_of_which_nothing_can_be_told_is_all_null() -> None:
     record = json.loads(write_making(Making(), FINGERPRINT))
 
     told = {name for name, value in record.items() if value not in (None, [])}
-    assert told == {"format", "fingerprint", "engine_version", "time_parts"}
+    assert told == {"format", "fingerprint", "engine_version", "disc", "time_parts"}
     assert set(record["time_parts"].values()) == {None}

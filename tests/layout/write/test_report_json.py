@@ -28,7 +28,7 @@ FIELDS = [
     *("format", "title", "fingerprint", "disc", "good_to_cut", "movement", "cutter", "engine_version"),
     *("transposed_semitones", "speed_factor", "from_s", "worth", "projection_count", "extra_pluck_count"),
     *("total", "highest", "lowest", "inner", "melody", "not_asked", "worst_bars", "tried"),
-    *("load", "no_load_because", "drive", "net_section", "tracks"),
+    *("load", "no_load_because", "drive", "net_section", "depth", "tracks"),
 ]
 TALLY_FIELDS = [
     *("note_count", "kept_count", "asked_weight", "kept_weight", "kept_share", "octave_count"),

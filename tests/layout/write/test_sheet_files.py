@@ -46,7 +46,7 @@ def test_a_drawing_is_a_sound_file_with_the_sheet_on_layers_of_its_own() -> None
     assert document.audit().errors == []
     assert document.units == ezdxf.units.MM
     # the library that reads adds Defpoints
-    assert {layer.dxf.name for layer in document.layers} - {"Defpoints"} == {"0", "STOCK", "CLAMPS", "RIM"}
+    assert {layer.dxf.name for layer in document.layers} - {"Defpoints"} == {"0", "STOCK", "CLAMPS", "RIM", "MARKS"}
     space = document.modelspace()
     outlines = [[(x, y) for x, y, *_ in line] for line in space.query('LWPOLYLINE[layer=="STOCK"]')]
     assert outlines[0] == [(0, 0), (500, 0), (500, 400), (0, 400)]

@@ -290,6 +290,17 @@ def test_errors_stand_before_warnings_and_advice() -> None:
     assert "The web between two openings on tracks 4 and 5 is 0.31 mm; the cutter needs 0.5 mm." in words
 
 
+def test_what_to_do_about_findings_is_told_where_there_is_room_for_all_of_them() -> None:
+    remedy = "To do: Leave one of the two notes out, or let the arranger move it to another tooth."
+
+    few, many = (words_of(sheet_of(ONE_FOLD, findings=(THIN_WEB,) * count)) for count in (2, 40))
+
+    assert few.count(f"the cutter needs 0.5 mm. {remedy}") == 2
+    assert "see layout.json" not in few
+    assert "To do:" not in many
+    assert "The web between two openings on tracks 4 and 5 is 0.31 mm; the cutter needs 0.5 mm." in many
+
+
 def test_many_findings_of_one_kind_leave_room_for_the_others() -> None:
     crowd = tuple(without(THIN_WEB, message=f"Web {place} is thin.") for place in range(300))
     advice = without(NEAR_LIMIT, code=Code.LABEL_HIDDEN, level=Level.ADVICE, message="Let it run out once.")
@@ -365,6 +376,7 @@ def test_the_order_number_stands_in_the_title_block_and_room_is_left_where_there
     [
         ("Été à l'orée – “naïve”", "Été à l'orée – “naïve”"),
         ("Żółta łódź", "Zólta lódz"),  # only ó is in code page 1252
+        ("Sáŋat ok Đorđe", "Sángat ok Dorde"),  # by their names: eng is like ng, a letter with stroke like it
         ("夜の歌", "(in letters this sheet cannot show: see layout.json)"),
         ("Waltz ♪ in 3", "Waltz ? in 3"),
         ("two\nlines\tand\x00more", "two lines and more"),

@@ -25,6 +25,7 @@ from tests.layout.write.examples import (
     ONE_FOLD,
     OPEN_LASER,
     PRESS,
+    SLOTS_ON_A_PRESS,
     TARNLIGHT,
     THREE_LANCES,
     THREE_SLOTS,
@@ -184,6 +185,21 @@ def test_the_section_of_a_lance_hangs_on_the_nearer_end_of_its_footprint() -> No
     assert section.tip_mm == pytest.approx(-1.55)
 
 
+@pytest.mark.parametrize(
+    ("forms", "told"),
+    [
+        (None, "forms the tab to the star side."),
+        ("up", "forms the tab upward: the star side lies above on the machine."),
+        ("down", "forms the tab downward: the label side lies above on the machine."),
+    ],
+)
+def test_a_lance_is_told_with_the_way_its_press_forms(forms: str | None, told: str) -> None:
+    document = PRESS.model_dump(mode="json")
+    cutter = Cutter.model_validate(document | {"press": document["press"] | {"forms": forms}})
+
+    assert told in words_of(sheet_of(disc_of(FERNHOLLOW, cutter, [(5, 90.0)])))
+
+
 def test_slots_and_what_a_cutter_cannot_form_have_no_section() -> None:
     no_fold = Cutter.model_validate(LASER.model_dump() | {"fold": None})
     no_tool = Cutter.model_validate(PRESS.model_dump() | {"tools": ()})
@@ -216,6 +232,32 @@ def test_deburring_comes_before_folding_and_stays_on_the_burr_side() -> None:
     assert words.index("Deburr both sides.") < words.index("Then fold, never before deburring.")
     assert "Deburr the star side, where the burr is." in sided
     assert "burr on the star side" in sided
+
+
+def test_a_press_strikes_slots_and_cuts_nothing_hot() -> None:
+    struck, cut = (words_of(sheet_of(disc)) for disc in (SLOTS_ON_A_PRESS, THREE_SLOTS))
+
+    assert "2. Strike the holes, then the slots, the rim last. 3. Take out every slug. Deburr both sides." in struck
+    assert "when it is cool" not in struck
+    assert "2. Cut; take the disc out when it is cool." in cut
+
+
+def test_a_rim_that_bridges_hold_is_one_in_pieces() -> None:
+    bridged = Cutter.model_validate(LASER.model_dump(mode="json") | {"bridges": {"count": 4, "width_mm": 0.6}})
+
+    whole, held = (words_of(sheet_of(disc_of(FERNHOLLOW, cutter, [(5, 90.0)]))) for cutter in (LASER, bridged))
+
+    assert "holes 4 rim 1 projections 1" in whole
+    assert "holes 4 rim 1, in 4 pieces projections 1" in held
+
+
+def test_the_index_mark_is_looked_for_on_the_side_that_is_marked() -> None:
+    barb = "up, the index mark's barb points the way the disc turns."
+
+    from_label, from_star = (words_of(sheet_of(disc)) for disc in (THREE_SLOTS, SLOTS_ON_A_PRESS))
+
+    assert f"Label side {barb}" in from_label
+    assert f"Star side {barb}" in from_star
 
 
 def test_the_height_has_a_gauge_for_each_end_of_its_band() -> None:
@@ -346,15 +388,6 @@ def test_what_making_takes_is_told_in_full() -> None:
         assert said in words
     assert "struck" not in words
     assert "Not stated" not in words
-
-
-def test_forces_of_a_press_are_told_where_they_are_known() -> None:
-    struck = Making(hit_count=3, hit_force_n=2484.0, stripping_force_n=496.8, time_s=12.04)
-
-    words = words_of(sheet_of(THREE_LANCES, making=struck))
-
-    assert "struck 3 times force of a hit 2.48 kN stripping 0.50 kN machine time 12.0 s" in words
-    assert "price" not in words
 
 
 def test_what_nobody_stated_is_named_and_nothing_is_guessed() -> None:

@@ -55,6 +55,16 @@ def test_drawing_and_sheet_come_as_they_are_asked_for(client: Client, media_type
     assert response.headers["Content-Disposition"] == f'attachment; filename="{name}"'
 
 
+def test_the_picture_is_shown_and_may_load_nothing(client: Client) -> None:
+    response = post(client, headers={"Accept": "image/svg+xml"})
+
+    assert (response.status_code, response.mimetype) == (200, "image/svg+xml")
+    assert response.data == FILES["trial-piece.svg"]
+    name = "trial-piece_tarnlight-17-r1_turn-press_star-side_mm.svg"
+    assert response.headers["Content-Disposition"] == f'inline; filename="{name}"'
+    assert response.headers["Content-Security-Policy"] == "default-src 'none'; style-src 'unsafe-inline'"
+
+
 def test_an_archive_holds_all_files(client: Client) -> None:
     response = post(client, headers={"Accept": "application/zip"})
 
@@ -105,7 +115,7 @@ def test_an_answer_that_cannot_be_given_is_refused(client: Client) -> None:
 
     assert problem_of(response) == (406, "/problems/not-acceptable")
     assert response.get_json()["allowed_types"] == [
-        *("application/json", "image/vnd.dxf", "application/pdf", "application/zip"),
+        *("application/json", "image/vnd.dxf", "image/svg+xml", "application/pdf", "application/zip"),
     ]
 
 

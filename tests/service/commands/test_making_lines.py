@@ -10,6 +10,8 @@ LASER: dict[str, Any] = {
     "hit_count": 0,
     "hit_force_n": None,
     "stripping_force_n": None,
+    "press_force_n": None,
+    "tools": [],
     "blank_mass_kg": 0.173151,
     "time_s": 136.7,
     "currency": "EUR",
@@ -18,7 +20,8 @@ LASER: dict[str, Any] = {
     "not_stated": [],
     "not_counted": [],
 }
-PRESS = LASER | {"cut_length_mm": 0.0, "pierce_count": 0, "hit_count": 359, "hit_force_n": 855.6}
+TOOLS = [{"tool": "R9", "hit_count": 1}, {"tool": "L12", "hit_count": 358}]
+PRESS = LASER | {"cut_length_mm": 0.0, "pierce_count": 0, "hit_count": 359, "hit_force_n": 855.6, "tools": TOOLS}
 
 
 def test_a_cut_disc_is_told_with_its_time_its_blank_and_its_price() -> None:
@@ -28,17 +31,23 @@ def test_a_cut_disc_is_told_with_its_time_its_blank_and_its_price() -> None:
     ]
 
 
-@pytest.mark.parametrize(("stripping_n", "force"), [(171.12, "1027 N"), (None, "856 N")])
-def test_a_struck_disc_is_told_with_the_force_of_a_hit_stripping_included(
-    stripping_n: float | None, force: str
-) -> None:
-    [work, _] = making_lines(PRESS | {"stripping_force_n": stripping_n})
+@pytest.mark.parametrize(
+    ("force_n", "force"), [(4682.2, ", press force up to 4682 N"), (None, "")], ids=["known", "not known"]
+)
+def test_a_struck_disc_is_told_with_its_tools_and_the_press_force(force_n: float | None, force: str) -> None:
+    lines = making_lines(PRESS | {"press_force_n": force_n, "blank_mass_kg": None})
 
-    assert work == f"  making      359 hits of {force}; machine time 2 min 17 s; blank 0.173 kg"
+    assert lines[0] == f"  making      359 hits with 2 tools{force}; machine time 2 min 17 s"
+
+
+def test_one_tool_is_one_tool() -> None:
+    [work, *_] = making_lines(PRESS | {"tools": TOOLS[1:]})
+
+    assert work.startswith("  making      359 hits with 1 tool;")
 
 
 def test_what_is_not_known_is_left_out_and_what_would_tell_it_is_named() -> None:
-    nothing = PRESS | {"hit_force_n": None, "blank_mass_kg": None, "time_s": None, "total": None}
+    nothing = PRESS | {"tools": [], "hit_force_n": None, "blank_mass_kg": None, "time_s": None, "total": None}
 
     lines = making_lines(nothing | {"not_stated": ["cutter.rates", "cutter.feeds.hit_s"]})
 

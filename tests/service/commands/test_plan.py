@@ -288,7 +288,7 @@ def test_when_renaming_stops_half_way_no_cutting_file_stands(
     out = tmp_path / "out"
     discwright("plan", tune, *MOVEMENT, "--out", out)
     planner.title = "Another"
-    renamed = []
+    renamed: list[Path] = []
 
     def stop_after_two(source: Path, target: Path) -> None:
         if len(renamed) == 2:

@@ -217,7 +217,7 @@ def test_interrupted_while_renaming_no_cutting_file_of_two_sets_stands(
     out = tmp_path / "out"
     discwright("plan", tune, *MOVEMENT, "--settings", two, "--out", out)
     planner.title = "Another"
-    renamed = []
+    renamed: list[Path] = []
 
     def stop_after_thirteen(source: Path, target: Path) -> None:
         if len(renamed) == 13:  # six files of each disc that are not cut, and one that is

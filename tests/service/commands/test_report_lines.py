@@ -176,6 +176,27 @@ NET_SECTION = {
 }
 
 
+DEPTH = {
+    "depth_mm": 1.41,
+    "plus_minus_mm": 0.05,
+    "flatness_mm": 0.1,
+    "least_mm": 1.26,
+    "most_mm": 1.56,
+    "flatness_limit_mm": 0.15,
+    "ended_by": "tip-in-bend",
+}
+
+
+def test_the_depth_is_told_with_what_flatness_takes_and_where_it_ends() -> None:
+    band = "1.260 to 1.560 mm at the star wheels, 1.41 mm within 0.05 mm of forming and 0.1 mm of flatness"
+
+    assert told_under("depth", depth=DEPTH) == f"{band}; sheets serve up to 0.150 mm out of flat, then tip-in-bend"
+    assert told_under("depth", depth=DEPTH | {"flatness_limit_mm": None, "ended_by": None}) == band
+    failing = DEPTH | {"flatness_limit_mm": -0.129, "ended_by": "step-too-short"}
+    assert told_under("depth", depth=failing) == f"{band}; not even a flat sheet serves: step-too-short"
+    assert told_under("depth", depth=None) == ""
+
+
 def test_the_metal_left_is_told_with_its_places_and_what_is_asked_for() -> None:
     assert told_under("metal", net_section=NET_SECTION) == (
         "least left on a line 84.3 % of at least 40 % (65.8 mm, at 286.9°), on a ring 75.9 % of at least 35 % "
@@ -207,6 +228,7 @@ def test_the_largest_report_fits_the_width() -> None:
         extra_pluck_count=20_000,
         tracks=TRACKS,
         net_section=NET_SECTION,
+        depth=DEPTH,
     )
 
     assert max(map(len, lines)) <= WIDTH

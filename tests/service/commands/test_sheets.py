@@ -109,18 +109,20 @@ def test_drawings_of_an_earlier_job_are_removed_and_other_files_stay(
     )
 
 
-def test_the_cutting_files_of_a_disc_are_never_touched(
-    discwright: Discwright, job: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
-) -> None:
+def test_the_cutting_files_of_a_disc_and_a_trial_piece_stay(discwright: Discwright, job: Path, tmp_path: Path) -> None:
     out = tmp_path / "dance"
     out.mkdir()
-    (out / "disc.dxf").write_text("a disc")
+    others = {"disc.dxf": "a disc", "hits.csv": "its hits", "trial-piece.dxf": "a piece", "sheet-notes.dxf": "mine"}
+    for name, content in others.items():
+        (out / name).write_text(content)
+    (out / "sheet-7.dxf").mkdir()  # someone's own, though it is called as a drawing is
 
     code = discwright("sheets", job, "--out", out)
 
-    assert code == 2
-    assert [path.name for path in out.iterdir()] == ["disc.dxf"]
-    assert "holds disc.dxf of a disc; choose another --out" in capsys.readouterr().err
+    assert code == 0
+    assert {name: (out / name).read_text() for name in others} == others
+    assert (out / "sheet-7.dxf").is_dir()
+    assert (out / "sheet-2.dxf").is_file()
 
 
 DISC = disc_dxf()

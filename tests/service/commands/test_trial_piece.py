@@ -72,7 +72,7 @@ def test_documents_of_ones_own_are_read_from_files(
         (["--movement", "fernhollow-31", "--out", ""], "is empty; give a folder"),
         (["--out", "OUT"], "--movement"),
         (["--movement", "fernhollow-31", "--cutter", "BARE", "--out", "OUT"], "states no fold; add fold to the cutter"),
-        (["--movement", "fernhollow-31", "--out", "BARE"], "cannot write to"),
+        (["--movement", "fernhollow-31", "--out", "BARE"], "is a file; --out names a folder"),
     ],
 )
 def test_what_cannot_be_done_is_one_line_and_writes_nothing(

@@ -1,0 +1,52 @@
+"""How far sizes of metal on a disc may be off, by what the movement states of its numbers' worth."""
+
+from layout.place.disc import Disc
+
+WIDTH = "/projection/width_mm"
+
+
+def radius_pointer(track_index: int) -> str:
+    """The JSON pointer of a track's radius, by its place from 0."""
+    return f"/tracks/{track_index}/radius_mm"
+
+
+def edge_unsure_mm(disc: Disc, track_index: int) -> float:
+    """How far the openings of a track may reach further out or in: its radius, and half a width."""
+    worth = disc.movement.plus_minus
+    return worth(radius_pointer(track_index)) + worth(WIDTH) / 2
+
+
+def feature_unsure_mm(disc: Disc, row: int) -> float:
+    """How far the edge of a feature towards centre or rim may be off: its radius, and half a width."""
+    at = f"/disc/features/{row}"
+    return disc.movement.plus_minus(f"{at}/radius_mm") + disc.movement.plus_minus(f"{at}/width_mm") / 2
+
+
+def along_unsure_mm(disc: Disc) -> float:
+    """How far an opening's length along the travel may be off: that of a slot, or what a tab of a depth leaves."""
+    return disc.movement.plus_minus(
+        "/projection/length_mm" if disc.pattern.making == "slot" else "/projection/depth_mm"
+    )
+
+
+def web_unsure_mm(disc: Disc, one: int, other: int) -> float:
+    """How far a web between two openings may be off: across the tracks by radii and a width, along one by a length.
+
+    On one track the web lies along the travel, where openings stand as they are cut, not as the movement is measured.
+
+    Args:
+        disc: The disc.
+        one: Index of a projection.
+        other: Index of another.
+    """
+    tracks, worth = disc.track_index[[one, other]].tolist(), disc.movement.plus_minus
+    if tracks[0] == tracks[1]:
+        return along_unsure_mm(disc)
+    return worth(radius_pointer(tracks[0])) + worth(radius_pointer(tracks[1])) + worth(WIDTH)
+
+
+def most_web_unsure_mm(disc: Disc) -> float:
+    """How far any web between two openings of a disc may be off at most."""
+    worth = disc.movement.plus_minus
+    radius_mm = max((worth(radius_pointer(index)) for index in disc.used_tracks), default=0.0)
+    return max(2 * radius_mm + worth(WIDTH), along_unsure_mm(disc))

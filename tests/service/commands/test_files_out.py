@@ -1,0 +1,73 @@
+"""The one way in which commands write their folders: whole or not at all, cutting files last, strangers left alone."""
+
+import errno
+import os
+from pathlib import Path
+
+import pytest
+
+from service.commands.errors import CommandError
+from service.commands.files_out import write_folders
+
+FILES = {"cut.dxf": b"to cut", "told.json": b"told"}
+CUTTING = ("cut.dxf", "hits.csv")
+
+
+def test_cutting_files_of_an_earlier_run_go_and_all_else_stays(tmp_path: Path) -> None:
+    for name in ("cut.dxf", "hits.csv", "disc.dxf", "notes.txt"):
+        (tmp_path / name).write_bytes(b"earlier")
+
+    removed = write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert removed == {tmp_path: ("hits.csv",)}
+    left = {path.name: path.read_bytes() for path in tmp_path.iterdir()}
+    assert left == FILES | {"disc.dxf": b"earlier", "notes.txt": b"earlier"}
+
+
+def test_a_run_that_is_interrupted_leaves_no_cutting_file_beside_other_files(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (tmp_path / "cut.dxf").write_bytes(b"earlier")
+    (tmp_path / "told.json").write_bytes(b"earlier")
+    moved: list[str] = []
+    replace = os.replace
+
+    def full_after_one(source: Path, target: Path) -> None:
+        if moved:
+            raise OSError(errno.ENOSPC, "No space left on device")
+        moved.append(Path(target).name)
+        replace(source, target)
+
+    monkeypatch.setattr(os, "replace", full_after_one)
+
+    with pytest.raises(CommandError, match=r"cannot write to .*: No space left on device"):
+        write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert moved == ["told.json"]
+    assert [path.name for path in tmp_path.iterdir()] == ["told.json"]
+
+
+def test_a_folder_without_files_is_not_made_and_only_loses_what_is_cut(tmp_path: Path) -> None:
+    (tmp_path / "1").mkdir()
+    (tmp_path / "1" / "cut.dxf").write_bytes(b"earlier")
+
+    removed = write_folders({tmp_path / "1": {}, tmp_path / "2": {}}, cutting=CUTTING)
+
+    assert removed == {tmp_path / "1": ("cut.dxf",), tmp_path / "2": ()}
+    assert not (tmp_path / "2").exists()
+    assert list((tmp_path / "1").iterdir()) == []
+
+
+@pytest.mark.parametrize("name", ["told.json", "hits.csv"])
+def test_a_folder_where_a_file_should_stand_is_told_before_anything_is_written(tmp_path: Path, name: str) -> None:
+    (tmp_path / name).mkdir()
+
+    with pytest.raises(CommandError, match=rf"{name}' is a folder; remove it or choose another --out"):
+        write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert [path.name for path in tmp_path.iterdir()] == [name]
+
+
+def test_a_null_character_in_a_path_is_told() -> None:
+    with pytest.raises(CommandError, match="cannot be made: embedded null"):
+        write_folders({Path("a\0b"): FILES}, cutting=CUTTING)
