@@ -1,17 +1,24 @@
 import errno
 import hashlib
+import os
+import signal
+import subprocess
+import sys
+import time
 from pathlib import Path
 from typing import Any
 
 import pytest
 
 from service.store.faults import StoreBusyError, StoreFullError
-from service.store.files import CHUNK_BYTES, FileLostError, FileStore
+from service.store.files import ABANDONED_S, CHUNK_BYTES, S3_PIECE_BYTES, FileLostError, FileStore
 
 
-@pytest.fixture
-def files(tmp_path: Path) -> FileStore:
-    return FileStore(f"file://{tmp_path}/files")
+@pytest.fixture(params=["folder", "bucket"])
+def files(request: pytest.FixtureRequest, tmp_path: Path) -> FileStore:
+    if request.param == "folder":
+        return FileStore(f"file://{tmp_path}/files")
+    return FileStore(f"s3://{request.getfixturevalue('bucket')}/of/the-shop")
 
 
 def test_a_file_is_found_under_the_digest_of_its_bytes(files: FileStore) -> None:
@@ -63,3 +70,76 @@ def test_a_file_that_could_not_be_written_leaves_nothing_behind(
         files.put(b"half")
 
     assert [path for path in (tmp_path / "files").rglob("*") if path.is_file()] == []
+
+
+def test_an_empty_file_is_a_file(files: FileStore) -> None:
+    digest = files.put(b"")
+
+    assert (files.has(digest), files.read(digest), list(files.digests())) == (True, b"", [digest])
+
+
+@pytest.mark.parametrize("byte_count", [S3_PIECE_BYTES - 1, S3_PIECE_BYTES, S3_PIECE_BYTES + 1])
+def test_a_large_file_comes_in_pieces(files: FileStore, byte_count: int) -> None:
+    content = os.urandom(byte_count)
+    digest = files.put(content)
+
+    pieces = list(files.chunks(digest))
+
+    assert b"".join(pieces) == content
+    assert max(map(len, pieces)) <= S3_PIECE_BYTES
+
+
+def test_a_part_past_the_end_of_a_file_ends_with_it(files: FileStore) -> None:
+    digest = files.put(b"0123456789")
+
+    assert b"".join(files.chunks(digest, start=7, end=99)) == b"789"
+    assert b"".join(files.chunks(digest, start=4, end=6)) == b"45"
+
+
+def test_what_was_deleted_stays_noted_and_is_no_file(files: FileStore) -> None:
+    assert list(files.noted()) == []
+
+    files.note("order_1")
+    files.note("order_2")
+    files.note("order_1")
+
+    assert sorted(files.noted()) == ["order_1", "order_2"]
+    assert list(files.digests()) == []
+
+
+@pytest.mark.parametrize("what", ["", "../order", "a/b", "order 1"])
+def test_what_is_no_id_is_not_noted(files: FileStore, what: str) -> None:
+    with pytest.raises(ValueError, match="is no id"):
+        files.note(what)
+
+
+# Writes a file as the service does, and is killed before the last of it is on the disk.
+WRITES_SLOWLY = """
+import os, sys, time
+from service.store.files import FileStore
+os.fsync = lambda handle: (print("half-way", flush=True), time.sleep(60))
+FileStore(sys.argv[1]).put(b"x" * 1_000_000)
+"""
+
+
+def test_a_file_left_half_written_by_a_killed_process_is_never_seen(tmp_path: Path) -> None:
+    url = f"file://{tmp_path}/files"
+    digest = hashlib.sha256(b"x" * 1_000_000).hexdigest()
+    process = subprocess.Popen([sys.executable, "-c", WRITES_SLOWLY, url], stdout=subprocess.PIPE, text=True)
+    files = FileStore(url)
+    with process:
+        assert process.stdout is not None
+        assert process.stdout.readline() == "half-way\n"
+        assert not files.has(digest)  # while it is written
+        process.send_signal(signal.SIGKILL)
+    [part] = [path for path in (tmp_path / "files").rglob("*") if path.is_file()]
+
+    assert process.returncode == -signal.SIGKILL
+    assert (files.has(digest), list(files.digests())) == (False, [])
+    with pytest.raises(FileLostError):
+        files.read(digest)
+    assert files.sweep_parts() == 0  # it might be another's that is still writing
+    os.utime(part, (time.time() - ABANDONED_S - 1,) * 2)
+    assert files.sweep_parts() == 1
+    assert files.put(b"x" * 1_000_000) == digest
+    assert files.read(digest) == b"x" * 1_000_000
