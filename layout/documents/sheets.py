@@ -6,7 +6,17 @@ from typing import Annotated, Literal, Self
 from pydantic import Field, field_validator, model_validator
 from shapely import Polygon, is_valid_reason
 
-from layout.documents.reading import LEAST_MM, Identifier, Length, LengthOrZero, Part, Title, check_document, read_json
+from layout.documents.reading import (
+    LEAST_MM,
+    Identifier,
+    Length,
+    LengthOrZero,
+    Part,
+    Title,
+    check_document,
+    check_worths,
+    read_json,
+)
 from layout.limits import limit
 
 FORMAT = "discwright-sheets/1"
@@ -188,5 +198,6 @@ def read_sheet_job(text: str | bytes) -> SheetJob:
     Raises:
         DocumentError: Not JSON, or not a valid sheet job; names every fault found.
     """
-    plain, _ = read_json(text, document="sheet job")
+    plain, stated = read_json(text, document="sheet job")
+    check_worths(stated, document="sheet job")
     return check_document(SheetJob, plain, document="sheet job")
