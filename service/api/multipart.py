@@ -4,7 +4,8 @@ The form parser of the web library turns parts without a file name into text, wh
 survive; so its decoder is driven here, and a part counts the same with a file name or without.
 """
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
+from itertools import chain
 
 from werkzeug.exceptions import RequestEntityTooLarge
 from werkzeug.sansio.multipart import Data, Epilogue, Event, Field, File, MultipartDecoder, NeedData
@@ -13,10 +14,17 @@ from service.api.problems import ProblemError
 
 
 def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_parts: int) -> dict[str, bytes]:
+    """The parts of a body by name; as `parts_in`, of a body that is there as a whole."""
+    return parts_in((body,), boundary=boundary, known=known, most_parts=most_parts)
+
+
+def parts_in(
+    body: Iterable[bytes], *, boundary: str | None, known: tuple[str, ...], most_parts: int
+) -> dict[str, bytes]:
     """The parts by name.
 
     Args:
-        body: The request's whole body.
+        body: The request's body, piece by piece, so that a large one is in memory once and not several times.
         boundary: Of the header Content-Type; None where it states none.
         known: Names that parts may have.
         most_parts: How many parts the body may have.
@@ -39,12 +47,14 @@ def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_
             parts[name] = bytearray()
         elif isinstance(event, Data):
             parts[name] += event.data
-    return {name: bytes(content) for name, content in parts.items()}
+    return {
+        name: bytes(parts.pop(name)) for name in list(parts)
+    }  # one after the other, so that one alone is there twice
 
 
-def _events(decoder: MultipartDecoder, body: bytes) -> Iterator[Event]:
+def _events(decoder: MultipartDecoder, body: Iterable[bytes]) -> Iterator[Event]:
     try:
-        for chunk in (body, None):  # None: nothing follows
+        for chunk in chain(body, [None]):  # None: nothing follows
             decoder.receive_data(chunk)
             while not isinstance(event := decoder.next_event(), Epilogue | NeedData):
                 yield event

@@ -1,5 +1,7 @@
 """What a POST of a layout brings: the tune, and which movement, cutter and settings it is for."""
 
+from collections.abc import Iterator
+
 from flask import Request
 
 from layout.documents import shipped_movement_ids
@@ -15,6 +17,7 @@ TUNE_MEDIA_TYPES = ("audio/midi", "audio/x-midi", "audio/mid", "application/x-mi
 FORM_MEDIA_TYPE = "multipart/form-data"
 MEDIA_TYPES = (*TUNE_MEDIA_TYPES, FORM_MEDIA_TYPE)
 DOCUMENT_PARTS = ("settings", "movement", "cutter")
+PIECE_BYTES = 256 * 1024  # read at a time
 
 
 def read_posted(request: Request, query: LayoutQuery, limits: Limits) -> Inputs:
@@ -66,21 +69,34 @@ def _parts(request: Request, limits: Limits) -> dict[str, bytes]:
 
 
 def body_of(request: Request, most_bytes: int) -> bytes:
-    """The whole body; the web library would cut off a chunked one at its limit and say nothing."""
+    """The whole body; the web library would cut off a chunked one at its limit and say nothing.
+
+    Raises:
+        ProblemError: It is too large, or ended too early.
+    """
+    return b"".join(pieces_of(request, most_bytes))
+
+
+def pieces_of(request: Request, most_bytes: int) -> Iterator[bytes]:
+    """The body piece by piece.
+
+    Raises:
+        ProblemError: It is too large, or ended too early.
+    """
     length = request.content_length
     if length is not None and length > most_bytes:
         raise too_large(most_bytes, "the request body")
-    body = bytearray()
-    while len(body) <= most_bytes and (chunk := request.stream.read(most_bytes + 1 - len(body))):
-        body += chunk
-    if len(body) > most_bytes:
-        raise too_large(most_bytes, "the request body")
-    if length is not None and len(body) < length:
+    seen = 0
+    while piece := request.stream.read(min(PIECE_BYTES, most_bytes + 1 - seen)):
+        seen += len(piece)
+        if seen > most_bytes:
+            raise too_large(most_bytes, "the request body")
+        yield piece
+    if length is not None and seen < length:
         raise ProblemError(
             name="request-malformed",
-            detail=f"the body ended after {len(body)} bytes, but Content-Length says {length}; send it again",
+            detail=f"the body ended after {seen} bytes, but Content-Length says {length}; send it again",
         )
-    return bytes(body)
 
 
 def _unsupported(detail: str, headers: dict[str, str]) -> ProblemError:
