@@ -14,6 +14,7 @@ from service.api.asking import guard
 from service.api.catalogue import catalogue_routes
 from service.api.desk import LayoutDesk
 from service.api.events import event_routes
+from service.api.exports import export_routes
 from service.api.failures import answer_failures
 from service.api.hooks import hook_routes
 from service.api.keys import key_routes
@@ -100,6 +101,7 @@ def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
     yield event_routes(parts)
     yield proof_routes(parts, links)
     yield hook_routes(parts)
+    yield export_routes(parts)
     yield key_routes(parts, _now)
     yield sign_in_routes(parts, _now)
 

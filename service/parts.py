@@ -53,10 +53,15 @@ def open_parts(settings: ServiceSettings) -> Parts:
             f"DISCWRIGHT_DATA is {str(settings.places.data_directory)!r}, which cannot be used: {fault.strerror}"
         ) from fault
     store = Store(settings.database_url)
-    if store.is_sqlite:
-        bring_up_to_date(store)
-    check_migrated(store)
-    return Parts(settings=settings, store=store, files=FileStore(settings.files_url), secret=secret)
+    try:
+        if store.is_sqlite:
+            bring_up_to_date(store)
+        check_migrated(store)
+        files = FileStore(settings.files_url)
+    except BaseException:
+        store.close()
+        raise
+    return Parts(settings=settings, store=store, files=files, secret=secret)
 
 
 def _secret(settings: ServiceSettings) -> bytes:

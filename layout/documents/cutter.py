@@ -26,6 +26,7 @@ from layout.documents.reading import (
     Part,
     Title,
     check_document,
+    check_worths,
     read_json,
 )
 
@@ -225,5 +226,6 @@ def read_cutter(text: str | bytes) -> Cutter:
     Raises:
         DocumentError: Not JSON, or not a valid cutter; names every fault found.
     """
-    plain, _ = read_json(text, document="cutter")
+    plain, stated = read_json(text, document="cutter")
+    check_worths(stated, document="cutter")
     return check_document(Cutter, plain, document="cutter")

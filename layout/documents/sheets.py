@@ -7,7 +7,17 @@ from pydantic import Field, field_validator, model_validator
 from shapely import Polygon, is_valid_reason
 
 from layout.documents.cutter import Layer, check_layers, layer_of
-from layout.documents.reading import LEAST_MM, Identifier, Length, LengthOrZero, Part, Title, check_document, read_json
+from layout.documents.reading import (
+    LEAST_MM,
+    Identifier,
+    Length,
+    LengthOrZero,
+    Part,
+    Title,
+    check_document,
+    check_worths,
+    read_json,
+)
 from layout.limits import limit
 
 FORMAT = "discwright-sheets/1"
@@ -211,5 +221,6 @@ def read_sheet_job(text: str | bytes) -> SheetJob:
     Raises:
         DocumentError: Not JSON, or not a valid sheet job; names every fault found.
     """
-    plain, _ = read_json(text, document="sheet job")
+    plain, stated = read_json(text, document="sheet job")
+    check_worths(stated, document="sheet job")
     return check_document(SheetJob, plain, document="sheet job")

@@ -5,7 +5,8 @@ survive; so its decoder is driven here, and a part counts the same with a file n
 """
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
+from itertools import chain
 
 from werkzeug.exceptions import RequestEntityTooLarge
 from werkzeug.sansio.multipart import Data, Epilogue, Event, Field, File, MultipartDecoder, NeedData
@@ -18,10 +19,17 @@ _SHOWN_CHARACTERS = 80  # of a name that is none, so that the answer stays reada
 
 
 def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_parts: int) -> dict[str, bytes]:
+    """The parts of a body by name; as `parts_in`, of a body that is there as a whole."""
+    return parts_in((body,), boundary=boundary, known=known, most_parts=most_parts)
+
+
+def parts_in(
+    body: Iterable[bytes], *, boundary: str | None, known: tuple[str, ...], most_parts: int
+) -> dict[str, bytes]:
     """The parts by name.
 
     Args:
-        body: The request's whole body.
+        body: The request's body, piece by piece, so that a large one is in memory once and not several times.
         boundary: Of the header Content-Type; None where it states none.
         known: Names that parts may have; one that ends in ID, such as drawing-ID, stands for those with an id there.
         most_parts: How many parts the body may have.
@@ -47,7 +55,9 @@ def parts_of(body: bytes, *, boundary: str | None, known: tuple[str, ...], most_
             parts[name] = bytearray()
         elif isinstance(event, Data):
             parts[name] += event.data
-    return {name: bytes(content) for name, content in parts.items()}
+    return {
+        name: bytes(parts.pop(name)) for name in list(parts)
+    }  # one after the other, so that one alone is there twice
 
 
 def _is_called(name: str, listed: str) -> bool:
@@ -58,9 +68,9 @@ def _is_called(name: str, listed: str) -> bool:
     return name.startswith(begins) and _AN_ID.fullmatch(name.removeprefix(begins)) is not None
 
 
-def _events(decoder: MultipartDecoder, body: bytes) -> Iterator[Event]:
+def _events(decoder: MultipartDecoder, body: Iterable[bytes]) -> Iterator[Event]:
     try:
-        for chunk in (body, None):  # None: nothing follows
+        for chunk in chain(body, [None]):  # None: nothing follows
             decoder.receive_data(chunk)
             while not isinstance(event := decoder.next_event(), Epilogue | NeedData):
                 yield event

@@ -76,7 +76,7 @@ def order_routes(parts: Parts, send: Send) -> Blueprint:
     @describes(orders.ERASE)
     @needs(Scope.ORDER)
     def erase(asker: Asker, order_id: str) -> Response:
-        order = erase_order(parts.store, parts.settings.places.data_directory, asker, order_id)
+        order = erase_order(parts.store, parts.files, asker, order_id)
         return json_response(order_told(order))
 
     return routes

@@ -8,7 +8,9 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import json_bytes, json_response
 from service.api.asking import needs
+from service.api.describing import describes
 from service.api.once import once
+from service.api.operations import quotes
 from service.api.order_forms import asked_order, brought_by, order_body, refused
 from service.media_types import JSON_MEDIA_TYPE
 from service.moments import moment_text
@@ -28,11 +30,13 @@ def quote_routes(planner: AnyPlanner, parts: Parts) -> Blueprint:
     routes = Blueprint("quotes", __name__, url_prefix="/v1/quotes")
 
     @routes.post("")
+    @describes(quotes.MAKE)
     @needs(Scope.ORDER)
     def quote(asker: Asker) -> Response:
         return _quoted(planner, parts, asker, request)
 
     @routes.get("/<quote_id>")
+    @describes(quotes.TELL)
     @needs(Scope.READ)
     def tell(asker: Asker, quote_id: str) -> Response:
         return json_response(quote_told(find_quote(parts.store, asker, quote_id)))

@@ -10,7 +10,6 @@ from service.logs import start_logging
 from service.parts import open_parts
 from service.settings import MOST_SLOTS, SettingsError, settings_from
 from service.store.faults import StoreError
-from service.working import work
 
 ABOUT = "Plan the orders that the web takes, and tell hooks of them, until Ctrl-C or SIGTERM."
 EXAMPLE = """example:
@@ -53,6 +52,8 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     Raises:
         CommandError: A number is out of range, a setting is wrong, or the database cannot be used.
     """
+    from service.working import work  # noqa: PLC0415 -- `serve` reads the arguments of this command, and works not
+
     slots = checked_slots(asked)
     try:
         settings = settings_from(os.environ)

@@ -106,6 +106,8 @@ def replan_order(store: Store, asker: Asker, seen: Seen, columns: Mapping[str, A
 
     def replanning(session: Session, order: Order, now: datetime) -> None:
         state = State(order.state)
+        if not order.tune_digest:
+            raise StateForbidsError("the order's tune was deleted; order again with the tune")
         if state in (State.PLANNING, State.RECEIVED, State.CANCELLED):
             raise StateForbidsError(f"the order is {state}; it can be planned anew once it is planned, or order again")
         if state is State.RELEASED:
@@ -207,6 +209,8 @@ def _decide(
         order = order_row(session, asker, seen.order_id)
         if seen.version not in (None, order.version):
             raise ChangedMeanwhileError(f"the order is at version {order.version}, not {seen.version}; read it again")
+        if order.erased_at is not None:
+            raise StateForbidsError("the order was deleted; nothing more is decided about it")
         decide(session, order, store.now(session))
         session.flush()
         view = order_view(session, order)

@@ -109,7 +109,7 @@ def keep_answer(session: Session, claim: Claim, given: Given) -> None:
         "status": given.status,
         "headers": dict(given.headers),
         "body": given.body,
-        "about": given.headers.get(ABOUT),
+        "about": given.headers.get(ABOUT, "").rpartition("/")[2] or None,
     }
     mine = update(KeptAnswer).where(*_row_of(claim.asked), KeptAnswer.token == claim.token).values(values)
     if session.execute(mine).rowcount == 0:  # type: ignore[attr-defined]
@@ -121,7 +121,7 @@ def empty_answers(session: Session, about: str) -> None:
 
     Args:
         session: Of the transaction that deletes it.
-        about: Its address.
+        about: Its id.
     """
     session.execute(update(KeptAnswer).where(KeptAnswer.about == about).values(body=b""))
 

@@ -80,6 +80,9 @@ def _released(session: Session, asker: Asker, order_id: str) -> tuple[Order, Pla
     plan = session.get(Plan, (first.id, first.plan_revision))
     if first.state != State.RELEASED or plan is None or first.erased_at is not None:
         raise StateForbidsError(f"the order {first.id} is {first.state}; a released one alone can be repeated")
+    of_plan = (PlanFile.order_id == first.id, PlanFile.revision == plan.revision)
+    if session.scalars(select(PlanFile.name).where(*of_plan).limit(1)).first() is None:
+        raise StateForbidsError(f"the files of the order {first.id} were deleted; order again with the tune")
     return first, plan
 
 

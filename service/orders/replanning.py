@@ -7,7 +7,7 @@ from typing import Any
 from layout.documents import read_settings
 from layout.walk import check_tune
 from service.access.asker import Asker
-from service.orders.faults import InputRefusedError
+from service.orders.faults import InputRefusedError, StateForbidsError
 from service.orders.finding import order_row
 from service.store.documents import document_in_force
 from service.store.holds import FileKeeper, Hold, hold
@@ -34,11 +34,14 @@ def columns_of(store: Store, keeper: FileKeeper, asker: Asker, order_id: str, an
 
     Raises:
         OrderUnknownError: There is no such order for the asker.
+        StateForbidsError: Its tune was deleted.
         InputRefusedError: There is no such revision.
         MidiReadError: The tune does not have the sequence that the settings ask for.
     """
     with store.reading() as session:
         order = order_row(session, asker, order_id)
+        if not order.tune_digest:  # else what is kept here would be held for an order that was deleted
+            raise StateForbidsError("the order's tune was deleted; order again with the tune")
         owner_id, movement_id, tune_digest = order.owner_id, order.movement_id, order.tune_digest
         movement = None
         if anew.movement_revision is not None:

@@ -168,6 +168,13 @@ class FileStore:
             if not self._files.exists(path):
                 self._write(path, b"")
 
+    def forget_note(self, what: str) -> None:
+        """Take a note back: what it says was not deleted after all."""
+        path = str(self._root / NOTES / what)
+        with self._told("a note of what was deleted could not be taken back"):
+            if self._files.exists(path):
+                self._files.rm_file(path)
+
     def noted(self) -> Iterator[str]:
         """The ids of all that was noted."""
         with self._told("the notes of what was deleted could not be listed"):

@@ -77,5 +77,5 @@ def revision_of(connection: Connection) -> str | None:
     """The revision of the tables, None where there are none."""
     if not inspect(connection).has_table(REVISIONS):
         return None
-    found: str | None = connection.execute(text(f"SELECT version_num FROM {REVISIONS}")).scalar()
+    found: str | None = connection.execute(text("SELECT version_num FROM alembic_version")).scalar()
     return found

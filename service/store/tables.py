@@ -258,7 +258,7 @@ class KeptAnswer(Row):
     status: Mapped[int | None]
     headers: Mapped[Facts | None]
     body: Mapped[bytes | None] = mapped_column(LargeBinary)  # empty where what it told of was deleted
-    about: Mapped[str | None] = mapped_column(String(100), index=True)  # the address of what it tells of
+    about: Mapped[str | None] = mapped_column(String(100), index=True)  # the id of what it tells of
     started_at: Mapped[datetime]
     lease_until: Mapped[datetime]  # after it a request that never ended may be made again
     expires_at: Mapped[datetime] = mapped_column(index=True)

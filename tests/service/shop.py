@@ -1,5 +1,7 @@
 """A shop and its people for tests: owners, askers, and orders placed and planned without HTTP."""
 
+import io
+import zipfile
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -44,6 +46,15 @@ ASKED = AskedOrder(
     reference="W-1001",
     most_lost_share=0.05,
 )
+
+
+def archive_of(**tunes: bytes) -> bytes:
+    """A ZIP archive of tunes; each is called as its argument, with the ending of MIDI files."""
+    out = io.BytesIO()
+    with zipfile.ZipFile(out, "w", zipfile.ZIP_DEFLATED) as archive:
+        for name, content in tunes.items():
+            archive.writestr(f"{name}.mid", content)
+    return out.getvalue()
 
 
 def open_shop(parts: Parts) -> None:

@@ -12,6 +12,7 @@ import pytest
 
 from layout.documents import shipped_cutter
 from layout.walk import files_for
+from service.settings import every_variable
 
 TOP = Path(__file__).parents[2]
 LASER_FILES = set(files_for(shipped_cutter("fibre-laser")))
@@ -93,9 +94,26 @@ def test_an_installed_command_needs_no_sources(first_start: Ended, copy: Path, t
 def test_the_image_copies_what_there_is_and_starts_the_app_that_is_there() -> None:
     recipe = (TOP / "docker/Dockerfile").read_text()
 
-    copied = [name for line in re.findall(r"^COPY (.+) \S+$", recipe, re.MULTILINE) for name in line.split()]
-    assert set(copied) == {"docker/requirements.txt", "pyproject.toml", "README.md", "layout", "service"}
+    copied = [name for line in re.findall(r"^COPY (?!--)(.+) \S+$", recipe, re.MULTILINE) for name in line.split()]
+    kept = {line.removeprefix("!") for line in (TOP / ".dockerignore").read_text().splitlines() if line[0] == "!"}
+    assert set(copied) == {"docker/requirements-many.txt", "pyproject.toml", "README.md", "layout", "service"} == kept
     assert all((TOP / name).exists() for name in copied)
-    assert "service.app:create_app()" in recipe
-    assert re.search(r"^USER (?!root)", recipe, re.MULTILINE)
+    assert re.findall(r"^(?:ENTRYPOINT|CMD) (.+)$", recipe, re.MULTILINE) == [
+        '["discwright"]',
+        '["serve", "--host", "0.0.0.0"]',
+    ]
+    assert re.search(r"^USER [1-9]\d*$", recipe, re.MULTILINE)
     assert "--require-hashes" in recipe
+
+
+def test_the_example_of_the_settings_names_each_of_them_once_with_its_default() -> None:
+    lines = (TOP / "docker/example.env").read_text().splitlines()
+    of_others = {"POSTGRES_PASSWORD", "PORT", "AWS_ENDPOINT_URL", "AWS_REGION", "AWS_ACCESS_KEY_ID"}
+    of_others.add("AWS_SECRET_ACCESS_KEY")
+
+    told = [re.fullmatch(r"#?([A-Z][A-Z0-9_]*)=(.*)", line) for line in lines if not line.startswith(("# ", "## "))]
+    read = {found[1]: found[2] for found in told if found}
+
+    assert len(read) == sum(found is not None for found in told)
+    assert set(read) - of_others == {one.name for one in every_variable()}
+    assert {one.name: one.default for one in every_variable() if " " not in one.default}.items() <= read.items()

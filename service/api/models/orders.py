@@ -1,9 +1,10 @@
 """Orders, as requests ask for them and answers tell them."""
 
+import re
 from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, Field, StrictBool
+from pydantic import AfterValidator, BeforeValidator, Field, StrictBool
 
 from layout.documents.reading import Part
 from service.orders.states import State
@@ -12,10 +13,18 @@ MOST_PAGE = 200  # orders of one page: about 600 kB of JSON
 MOST_WAIT_S = 30  # s; proxies give up after 60
 ORDER_ID = r"^order_[0-9a-f]{32}$"
 
+RFC_3339 = re.compile(r"\d{4}-\d\d-\d\d[Tt ]\d\d:\d\d:\d\d(\.\d+)?([Zz]|[+-]\d\d:\d\d)?")  # the zone is asked for below
+
 
 def _one_line(text: str) -> str:
     if not text.isprintable():
         raise ValueError("it must be one line of printable characters")
+    return text
+
+
+def _rfc_3339(text: object) -> object:
+    if isinstance(text, str) and RFC_3339.fullmatch(text) is None:
+        raise ValueError("it must be a moment such as 2026-12-02T10:00:00Z (RFC 3339)")
     return text
 
 
@@ -25,9 +34,13 @@ def _with_zone(moment: datetime) -> datetime:
     return moment.astimezone(UTC)
 
 
-OneLine = Annotated[str, AfterValidator(_one_line), Field(min_length=1, max_length=200)]
-Reason = Annotated[str, AfterValidator(_one_line), Field(min_length=1, max_length=200)]
-Instant = Annotated[datetime, AfterValidator(_with_zone)]
+# A schema can forbid control characters; that others cannot be printed either is checked, and told in the detail.
+PRINTABLE = {"pattern": "^[^\\u0000-\\u001f\\u007f-\\u009f]*$"}
+OneLine = Annotated[
+    str, AfterValidator(_one_line), Field(min_length=1, max_length=200, json_schema_extra={**PRINTABLE})
+]
+Reason = OneLine
+Instant = Annotated[datetime, BeforeValidator(_rfc_3339), AfterValidator(_with_zone)]
 
 
 class DocumentName(Part):

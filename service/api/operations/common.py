@@ -28,37 +28,38 @@ IDEMPOTENCY_KEY = HeaderField(
     name="Idempotency-Key",
     meaning='A name for this request, such as "a-1": 1 to 255 printable ASCII characters in quotes. Sent again with '
     "the same key and content within 30 days, the request is answered as the first time, and its work is done once.",
-    schema={"type": "string", "pattern": '^"[ !#-\\[\\]-~]{1,255}"$', "examples": ['"W-1001"']},
+    schema={
+        "type": "string",
+        "pattern": '^("[ !#-\\[\\]-~]{1,255}"|[!#-\\[\\]-~]{1,255})$',
+        "examples": ['"W-1001"'],
+    },
 )
+# What cannot be read in the fields that follow is as if it were not there (RFC 9110), so any text is valid.
 IF_MATCH = HeaderField(
     name="If-Match",
     meaning="The entity tag of the order as it was read: the request is refused where it has changed since.",
-    schema={"type": "string", "pattern": '^"[0-9]{1,9}"$'},
 )
 IF_NONE_MATCH = HeaderField(
     name="If-None-Match",
     meaning="The entity tag of what the client has: the answer is 304 where that is still the same.",
-    schema={"type": "string", "pattern": '^"[!#-~]{1,80}"$'},
 )
 RANGE = HeaderField(
     name="Range",
     meaning="The part of the file that is wanted; of several none is honoured.",
-    schema={"type": "string", "pattern": "^bytes=([0-9]{1,9}-[0-9]{0,9}|-[0-9]{1,9})$", "examples": ["bytes=0-99"]},
+    schema={"type": "string", "examples": ["bytes=0-99"]},
 )
 IF_RANGE = HeaderField(
     name="If-Range",
     meaning="The entity tag of what the client has a part of: the whole is sent where it is another.",
-    schema={"type": "string", "pattern": '^"[!#-~]{1,80}"$'},
 )
 PREFER = HeaderField(
     name="Prefer",
     meaning="wait=n: wait at most n seconds, up to 30, till there is something new to tell (RFC 7240).",
-    schema={"type": "string", "pattern": "^wait=[0-9]{1,3}$", "examples": ["wait=20"]},
+    schema={"type": "string", "examples": ["wait=20"]},
 )
 LAST_EVENT_ID = HeaderField(
     name="Last-Event-ID",
     meaning="The number of the last event seen; a stream goes on after it.",
-    schema={"type": "string", "pattern": "^[0-9]{1,18}$"},
 )
 CSRF_TOKEN = HeaderField(
     name="X-CSRF-Token",

@@ -18,7 +18,7 @@ from service.api.operations.common import SMALL_TUNE
 from service.moments import utc_now
 from service.parts import Parts
 from tests.service.api.guarded import bearing, new_key
-from tests.service.shop import planned
+from tests.service.shop import archive_of, planned
 
 FORMS = ("multipart/form-data", "application/x-www-form-urlencoded")
 JSON_TYPES = ("application/json", "application/problem+json", "application/schema+json")
@@ -71,6 +71,8 @@ class World:
             "a ready order": lambda: {"order_id": self._ready()},
             "a released order": self._released,
             "a proof": self._proof,
+            "a run": self._run,
+            "a quote": self._quote,
             "a hook": lambda: {"hook_id": self._hook()},
             "a delivery": self._delivery,
             "a key": self._key,
@@ -84,7 +86,7 @@ class World:
         return answer.json
 
     def _layout(self) -> dict[str, Any]:
-        made = self.post("/v1/layouts?movement=fernhollow-31", data=b"MThd a tune", content_type="audio/midi")
+        made = self.post("/v1/layouts?movement=fernhollow-31", data=SMALL_TUNE, content_type="audio/midi")
         return {"fingerprint": made["fingerprint"]}
 
     def _order(self) -> str:
@@ -103,6 +105,15 @@ class World:
         order_id = self._ready()
         self.post(f"/v1/orders/{order_id}/release", json={"by": "A. Maker"})
         return {"order_id": order_id, "fields": {"order": {"repeat_of": order_id}}}
+
+    def _run(self) -> dict[str, Any]:
+        archive = (BytesIO(archive_of(a=SMALL_TUNE)), "tunes.zip", "application/zip")
+        form = {"archive": archive, "run": as_part("run", {"movements": ["fernhollow-31"]})}
+        return {"run_id": self.post("/v1/runs", data=form)["id"]}
+
+    def _quote(self) -> dict[str, Any]:
+        form = {"tune": as_part("tune", SMALL_TUNE), "order": as_part("order", {"movement": "fernhollow-31"})}
+        return {"quote_id": self.post("/v1/quotes", data=form)["id"]}
 
     def _proof(self) -> dict[str, Any]:
         made = self.post(f"/v1/orders/{self._ready()}/proof-links")

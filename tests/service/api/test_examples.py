@@ -14,12 +14,12 @@ from service.parts import Parts
 from service.settings import AccessSettings
 from tests.service.api.described import World, assert_described
 from tests.service.conftest import parts_of
-from tests.service.fakes import MANY, FakePlanner
+from tests.service.fakes import MANY
 
 
 def app_of(parts: Parts) -> Flask:
     access = AccessSettings(listens_on_loopback=True, read_rate=MANY, write_rate=MANY)
-    return create_app(replace(parts.settings, access=access), planner=FakePlanner())
+    return create_app(replace(parts.settings, access=access))
 
 
 @pytest.fixture(scope="module")

@@ -1,6 +1,4 @@
-import io
 import threading
-import zipfile
 from dataclasses import replace
 from typing import Any
 
@@ -20,17 +18,9 @@ from service.orders.run_views import RunView, find_run, items_of, list_runs
 from service.orders.running import AskedRun, Pair, begin_run
 from service.parts import Parts
 from service.store.tables import FileHold, Order
-from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, WEB_TESTS, keeper_of, open_shop, planned
+from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, WEB_TESTS, archive_of, keeper_of, open_shop, planned
 
 FERN, TARN = NamedDocument(id="fernhollow-31"), NamedDocument(id="tarnlight-17")
-
-
-def archive_of(**tunes: bytes) -> bytes:
-    out = io.BytesIO()
-    with zipfile.ZipFile(out, "w") as archive:
-        for name, content in tunes.items():
-            archive.writestr(f"{name}.mid", content)
-    return out.getvalue()
 
 
 ASKED = AskedRun(

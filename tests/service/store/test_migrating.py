@@ -1,0 +1,51 @@
+"""Migrations: what the code takes for the newest revision is the newest, and no start pays for looking."""
+
+import subprocess
+import sys
+from importlib.resources import files
+
+import pytest
+from alembic.config import Config
+from alembic.script import ScriptDirectory
+from sqlalchemy import text
+
+from service.parts import Parts
+from service.store.faults import StoreOldError
+from service.store.migrating import NEWEST, bring_up_to_date, check_migrated, migrate
+
+
+def test_the_revision_in_the_code_is_the_newest_of_the_migrations() -> None:
+    config = Config()
+    config.set_main_option("script_location", str(files("service.store") / "migrations"))
+
+    assert ScriptDirectory.from_config(config).get_current_head() == NEWEST
+
+
+def test_a_database_is_migrated_once_and_stays_as_it_is(any_parts: Parts) -> None:
+    assert migrate(any_parts.store) == (NEWEST, NEWEST)
+    bring_up_to_date(any_parts.store)
+    check_migrated(any_parts.store)
+
+
+def test_a_database_of_a_later_version_is_left_alone_and_told(parts: Parts) -> None:
+    with parts.store.writing() as session:
+        session.execute(text("UPDATE alembic_version SET version_num = '9999'"))
+
+    with pytest.raises(StoreOldError, match="revision 9999, which this version does not know"):
+        bring_up_to_date(parts.store)
+    with pytest.raises(StoreOldError, match="revision 9999, not 0001"):
+        check_migrated(parts.store)
+
+
+def test_opening_a_migrated_database_imports_no_alembic(parts: Parts) -> None:
+    source = (
+        "import os, sys; from service.parts import open_parts; from service.settings import settings_from; "
+        "open_parts(settings_from(os.environ)).store.close(); print('alembic' in sys.modules)"
+    )
+    environment = {"DISCWRIGHT_DATA": str(parts.settings.places.data_directory)}
+
+    told = subprocess.run(
+        [sys.executable, "-c", source], env=environment, capture_output=True, text=True, check=True, timeout=60
+    )
+
+    assert told.stdout == "False\n"
