@@ -38,7 +38,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner =
     _log_to_stderr()
     app = Flask("discwright", static_folder=None, template_folder=None)
     app.config["MAX_CONTENT_LENGTH"] = settings.limits.upload_bytes + 1  # one more, to see that it is too large
-    desk = LayoutDesk(planner, LayoutCache(settings))
+    desk = LayoutDesk(planner, LayoutCache(settings), settings.limits)
     app.register_blueprint(layout_routes(desk, settings.limits))
     app.register_blueprint(trial_piece_routes(settings.limits))
     app.register_blueprint(sheet_routes(settings.limits))
