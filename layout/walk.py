@@ -163,7 +163,13 @@ def lay_out(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings,
 
 
 def lay_out_discs(
-    tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+    tune: bytes,
+    movement: Movement,
+    cutter: Cutter,
+    settings: Settings,
+    clock: Clock | None = None,
+    *,
+    most_s: float | None = None,
 ) -> tuple[LaidOut, ...]:
     """The tune laid out on settings.discs discs, in the order they are played, each checked.
 
@@ -175,6 +181,7 @@ def lay_out_discs(
         cutter: The cutter that makes them.
         settings: What the maker asks for.
         clock: As for `lay_out`.
+        most_s: Seconds by the clock that the search may take where the settings allow more; no part of the fingerprint.
 
     Raises:
         MidiReadError: The tune cannot be read.
@@ -184,7 +191,7 @@ def lay_out_discs(
     score = read_score(tune, sequence=settings.sequence)
     turning = turning_of(movement)
     spacing = spacing_of(movement, turning, pattern_of(movement, cutter), cutter.min_web_mm)
-    arrangements = arrange_discs(score, movement, settings, spacing, clock)
+    arrangements = arrange_discs(score, movement, settings, spacing, clock, most_s)
     whole = _whole_tune(score, arrangements)
     discs = [place(arrangement, movement, cutter) for arrangement in arrangements]
     laid_out = (

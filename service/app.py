@@ -82,7 +82,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
 def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]:
     """What is computed at once and kept for a while."""
     settings = parts.settings
-    yield layout_routes(LayoutDesk(planner, LayoutCache(settings)), parts)
+    yield layout_routes(LayoutDesk(planner, LayoutCache(settings), settings.limits), parts)
     yield trial_piece_routes(parts)
     yield quote_routes(planner, parts)
     yield sheet_routes(settings.limits)

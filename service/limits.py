@@ -52,6 +52,11 @@ class Limits:
     shown_characters: int = limit(
         500, "characters", "longest text told about one fault, since it may repeat what was sent"
     )
+    search_s: int = limit(
+        60,
+        "seconds",
+        "longest search for one layout, whatever its settings allow; with what follows an answer comes within 120 s",
+    )
     cache_layouts: int = limit(
         200, "layouts", "layouts kept for their links; the least recently used goes first, post the tune again then"
     )

@@ -44,6 +44,10 @@ class Layout(Protocol):
     def good_to_cut(self) -> bool:
         """Whether no error-level finding stands."""
 
+    @property
+    def stopped(self) -> str | None:
+        """What ended the search for it too early: "time", or a count; None where nothing did."""
+
 
 class CheckedDrawing(Protocol):
     """What a drawing would play, and what is wrong with it."""
@@ -72,9 +76,19 @@ class Planner(Protocol[LayoutT]):
     """The walk from bytes to files; see `layout.walk` for what each gives and raises."""
 
     def lay_out_discs(
-        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+        self,
+        tune: bytes,
+        movement: Movement,
+        cutter: Cutter,
+        settings: Settings,
+        clock: Clock | None = None,
+        *,
+        most_s: float | None = None,
     ) -> tuple[LayoutT, ...]:
-        """The tune laid out and checked, on as many discs as the settings ask for, within their time limit."""
+        """The tune laid out and checked, on as many discs as the settings ask for.
+
+        The search keeps to the settings' time limit, or to `most_s` where that is shorter.
+        """
 
     def fingerprint_of(
         self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1
@@ -95,10 +109,17 @@ class TheWalk:
     """`layout.walk`, imported when it is first asked for anything: it takes a second, and much is done without it."""
 
     def lay_out_discs(
-        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+        self,
+        tune: bytes,
+        movement: Movement,
+        cutter: Cutter,
+        settings: Settings,
+        clock: Clock | None = None,
+        *,
+        most_s: float | None = None,
     ) -> tuple[Any, ...]:
         """As `layout.walk` does."""
-        laid_out: tuple[Any, ...] = _walk().lay_out_discs(tune, movement, cutter, settings, clock)
+        laid_out: tuple[Any, ...] = _walk().lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
         return laid_out
 
     def fingerprint_of(

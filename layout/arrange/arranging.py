@@ -11,7 +11,7 @@ from layout.arrange.finishing import Finishing
 from layout.arrange.moments import speed_factors
 from layout.arrange.posing import Rules, most_kept, pose, rules_of
 from layout.arrange.problem import Problem
-from layout.arrange.refusals import Refused, refusal
+from layout.arrange.refusals import Refused, refusal, undecided
 from layout.arrange.rulings import Rulings, check_in_time, read_rulings
 from layout.arrange.searching import NoWay, Way, search
 from layout.arrange.splitting import fitting_factor
@@ -51,7 +51,12 @@ def arrange(
 
 
 def arrange_discs(
-    score: Score, movement: Movement, settings: Settings, spacing: Spacing, clock: Clock | None = None
+    score: Score,
+    movement: Movement,
+    settings: Settings,
+    spacing: Spacing,
+    clock: Clock | None = None,
+    most_s: float | None = None,
 ) -> tuple[Arrangement, ...]:
     """The same for as many discs as the settings say, in the tune's order, at one transposition and speed.
 
@@ -64,12 +69,14 @@ def arrange_discs(
         settings: What the maker asks for.
         spacing: As for `arrange`.
         clock: As for `arrange`.
+        most_s: Seconds by the clock that the search may take where the settings allow more; None for no such limit.
 
     Raises:
         DocumentError: The passage of the settings cannot be.
         RulingError: The settings' rulings contradict each other, the tune, the passage or the comb.
     """
-    budget = Budget(time_limit_s=settings.time_limit_s, clock=clock)
+    limits_s = [limit_s for limit_s in (settings.time_limit_s, most_s) if limit_s is not None]
+    budget = Budget(time_limit_s=min(limits_s, default=None), clock=clock)
     comb, turning = comb_of(movement), turning_of(movement)
     tune = _Tune(score=score, settings=settings, turning=turning, rulings=read_rulings(settings.rulings, score, comb))
     rules = rules_of(movement, comb, turning, spacing, settings)
@@ -159,6 +166,8 @@ def _most(asked: Sequence[Asked], way: Way, rules: Rules) -> int:
 def _refusal(
     found: NoWay, asked: Mapping[float, tuple[Asked, ...]], tune: _Tune, comb: Comb, spacing: Spacing
 ) -> RulingError:
+    if found.not_known:
+        return undecided(len(tune.rulings.forced), found.not_known, len(found.shown_by))
     way = min(found.shown_by, key=lambda way: (abs(way.speed_factor - 1), abs(way.semitones), way.semitones))
     disc, problem, impossible = found.shown_by[way]
     refused = Refused(

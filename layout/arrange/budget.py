@@ -6,6 +6,7 @@ so what each kind of work takes in looks was measured; it need not be exact, onl
 """
 
 from collections.abc import Callable
+from functools import cached_property
 from typing import Literal
 
 # Over everything searched for one tune. Real pieces take up to 250,000 states and 700 nodes; these
@@ -14,6 +15,11 @@ MOST_NODES = 4_000  # nodes of integer programs, as layout.arrange.integer_progr
 MOST_STATES = 400_000  # states of dynamic programs
 MOST_LOOKS = 20_000_000  # real pieces proved in some seconds take one to two millions
 
+# Beside these, for what must be known before there is any answer: whether the rulings can be followed.
+MOST_NODES_FOR_RULINGS = 2_000  # nodes
+MOST_LOOKS_FOR_RULINGS = 10_000_000
+MOST_S_FOR_RULINGS = 15.0  # seconds after the time limit, where there is one
+
 # Looks that each kind of work takes.
 LOOKS_TO_POSE = 6  # by spot: to pose a problem and take it apart
 LOOKS_TO_NARROW = 120  # by pluck of a part too crowded for all its states
@@ -21,6 +27,7 @@ LOOKS_TO_BEGIN = 3_000  # by program, whatever its size
 LOOKS_TO_WRITE = 3  # by entry of a program's rows, and by spot lifted at a moment while they are sought
 LOOKS_TO_FIT = 60  # by pluck put down by hand
 ENTRIES_A_LOOK = 100  # loads of one spot at moments, worked out in one go
+LOOKS_TO_TRY = 60  # by pluck that must sound, to see whether some of them have room
 LOOKS_TO_PLAY = 200  # by pluck nudged to its moment
 LOOKS_TO_JUDGE = 5  # by pluck held against every rule
 
@@ -40,8 +47,8 @@ class Budget:
         self._nodes = nodes
         self.nodes_left = nodes
         self.states_left = states
-        self._looks = looks
         self.looks_left = looks
+        self.looks_spent = 0  # what was taken when none were left counted in
         self._clock = clock
         self._ends_s = None if time_limit_s is None or clock is None else clock() + time_limit_s
 
@@ -56,11 +63,18 @@ class Budget:
     def spend_looks(self, looks: int) -> None:
         """Take looks off."""
         self.looks_left = max(self.looks_left - looks, 0)
+        self.looks_spent += looks
 
-    @property
-    def looks_spent(self) -> int:
-        """Looks taken off so far."""
-        return self._looks - self.looks_left
+    @cached_property
+    def for_rulings(self) -> "Budget":
+        """What a whole search may spend on finding out whether rulings can be followed, when its own is spent too."""
+        left_s = self.seconds_left()
+        return Budget(
+            nodes=MOST_NODES_FOR_RULINGS,
+            looks=MOST_LOOKS_FOR_RULINGS,
+            time_limit_s=None if left_s is None else left_s + MOST_S_FOR_RULINGS,
+            clock=self._clock,
+        )
 
     @property
     def nodes_spent(self) -> int:

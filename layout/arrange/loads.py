@@ -14,6 +14,9 @@ from layout.mechanics.arrays import IntArray
 
 _ROWS_AT_A_TIME = 1 << 20  # spots at moments looked at together: some tens of megabytes
 
+_ROUNDED_UP = 1 + 1e-6  # far more than sums of some ten thousand floating-point numbers may be short
+_ROUNDING_NS = 4.0  # what sums of times may be short, where windows are so long that they are not exact
+
 
 def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int], list[int]]]:
     """The spots that load the disc at an asked moment, and their loads, where all of them could be too much.
@@ -191,16 +194,25 @@ def _windows(
 
 
 def _crowded_ns(problem: Problem, drive: Drive, spots: IntArray) -> list[int]:
-    """The asked moments at which the full loads of all teeth lifted then would be too much."""
+    """The asked moments at which the teeth of all these spots together may load the disc too much.
+
+    Reckoned in floating point and rounded up well, so that no such moment is missed.
+    """
     if not len(spots):
         return []
-    asked_ns, track = problem.asked_ns[spots], problem.track[spots]
-    moments_ns = np.unique(asked_ns)
-    changes = np.zeros(len(moments_ns) + 1, dtype=np.int64)
-    # Once more for the turn after: its first plucks may be lifted while the last of this one are.
-    for load, window_ns in zip(drive.load_table.T[:, track], drive.window_table.T[:, track], strict=True):
-        for released_ns in (asked_ns, asked_ns + problem.turn_ns):
-            np.add.at(changes, np.searchsorted(moments_ns, released_ns - window_ns, side="right"), load)
-            np.add.at(changes, np.searchsorted(moments_ns, released_ns, side="right"), -load)
-    crowded: list[int] = moments_ns[np.cumsum(changes)[:-1] > drive.limit].tolist()
+    moments_ns = np.unique(problem.asked_ns[spots])
+    most = np.zeros(len(moments_ns))
+    for track in np.unique(problem.track[spots]).tolist():
+        asked_ns = np.sort(problem.asked_ns[spots[problem.track[spots] == track]])
+        sums_ns = np.concatenate([[0], np.cumsum(asked_ns)])
+        for lift in drive.lifts[track]:
+            # Once more for the turn after: its first plucks may be lifted while the last of this one are.
+            for from_ns in (moments_ns, moments_ns - problem.turn_ns):
+                first = np.searchsorted(asked_ns, from_ns)
+                last = np.searchsorted(asked_ns, from_ns + lift.window_ns)
+                count = last - first
+                since_ns = (sums_ns[last] - sums_ns[first] - count * from_ns).astype(np.float64)
+                left_ns = count * float(lift.window_ns) - since_ns + _ROUNDING_NS * (count > 0)
+                most += lift.load * (left_ns / lift.window_ns) + count  # every load is rounded up to a whole one
+    crowded: list[int] = moments_ns[most * _ROUNDED_UP > drive.limit].tolist()
     return crowded

@@ -189,6 +189,13 @@ class LoadsStanding:
         place = self._place(spot)
         self._standing = np.insert(self._standing, np.searchsorted(self._standing, place), place)
 
+    def take(self, spot: int) -> None:
+        """Take a spot that was put off again."""
+        for first, last, load in self._of(spot, self._moments_ns):
+            self.entries += last - first
+            self._loads[first:last] -= load
+        self._standing = np.delete(self._standing, np.searchsorted(self._standing, self._place(spot)))
+
     def _place(self, spot: int) -> int:
         return int(np.searchsorted(self._moments_ns, self._problem.asked_ns[spot]))
 

@@ -20,6 +20,8 @@ from layout.documents.settings import Transpose
 from layout.errors import Problem, RulingError
 from layout.mechanics.spacing import Spacing
 
+MOST_TOGETHER = 12  # notes that clash together and are each named; of more it is told how many they are
+
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class Refused:
@@ -48,6 +50,22 @@ def refusal(refused: Refused, rulings: Rulings, comb: Comb, spacing: Spacing, tr
     return ruling_error([Problem(pointer=one.pointer, message=f"{where}: {one.message}") for one in told])
 
 
+def undecided(forced_count: int, not_known: int, impossible: int) -> RulingError:
+    """The error where it was not found out in reasonable time whether the rulings can be followed.
+
+    Args:
+        forced_count: How many notes must sound.
+        not_known: Transpositions, each at every speed, that may follow all rulings.
+        impossible: Those that are known not to.
+    """
+    message = (
+        f"whether all {forced_count} notes that must sound fit on the disc was not found out within the work that a "
+        f"search may take ({impossible} of {not_known + impossible} transpositions and speeds searched were found "
+        "impossible, the others are not known); make fewer notes must-sound, or fix the transposition and the speed"
+    )
+    return RulingError(document="settings", problems=(Problem(pointer="/rulings", message=message),))
+
+
 def _off_the_comb(refused: Refused, forced: Mapping[int, Forced], comb: Comb) -> list[Problem]:
     """Every forced pluck that has no spot."""
     found = []
@@ -73,6 +91,9 @@ def _clash(posed: Posed, forced: Sequence[Forced], plucks: Sequence[int], spacin
     """What keeps forced plucks, as few as clash, from sounding together."""
     ranked = sorted(forced, key=lambda one: one.ruling, reverse=True)
     last = ranked[0]
+    if len(ranked) > MOST_TOGETHER:
+        message = f"{last} and {len(ranked) - 1} other notes that must sound have no room together; drop some of them"
+        return Problem(pointer=last.pointer, message=message)
     why = _why(posed, plucks, spacing)
     if len(ranked) == 1:
         return Problem(pointer=last.pointer, message=f"{last} cannot sound: {why}")

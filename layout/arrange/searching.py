@@ -11,7 +11,7 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 from layout.arrange.arrangement import Stopped, Tried
-from layout.arrange.budget import LOOKS_TO_POSE, Budget
+from layout.arrange.budget import LOOKS_TO_BEGIN, LOOKS_TO_POSE, Budget
 from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solved, Solving
 
@@ -52,9 +52,15 @@ class Found:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class NoWay:
-    """Every way searched is impossible, each with what shows it: the disc, from 0, its problem and the plucks."""
+    """No way searched was found possible.
+
+    Attributes:
+        shown_by: Of each way known to be impossible what shows it: the disc, from 0, its problem and the plucks.
+        not_known: How many ways may be possible: it was not found out, or they were not come to.
+    """
 
     shown_by: dict[Way, tuple[int, Problem, Impossible]]
+    not_known: int = 0
 
 
 class _Candidate:
@@ -144,7 +150,7 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
     heapq.heapify(heap)
     finished: list[_Candidate] = []
     over = _begun(left, heap, budget, finished)
-    while heap and not (finished and (budget.spent or _enough(finished, left[heap[0][1]], budget))):
+    while finished and heap and not (budget.spent or _enough(finished, left[heap[0][1]], budget)):
         _, place = heapq.heappop(heap)
         candidate = left[place]
         candidate.step(budget)
@@ -154,9 +160,11 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
         over.append(candidate)
         if candidate.solved is not None:
             finished.append(candidate)
+    known = {one.way: one.impossible for one in over if one.impossible is not None and one.impossible[2].is_known}
     if finished:
-        return _found(finished, [left[place] for _, place in heap], budget)
-    return NoWay(shown_by={one.way: one.impossible for one in over if one.impossible is not None})
+        not_known = [one for one in over if one.solved is None and one.way not in known]
+        return _found(finished, [left[place] for _, place in heap] + not_known, budget)
+    return NoWay(shown_by=known, not_known=len(left) - len(known))
 
 
 def _begun(
@@ -165,12 +173,16 @@ def _begun(
     """The candidates that are solved to their end before the search begins, or found impossible on the way.
 
     They are the most promising, and the same transposition at the slowest speed: slower leaves more
-    room on every track, so hardly any other speed keeps more.
+    room on every track, so hardly any other speed keeps more. Where rulings forbid one after the other, the
+    search goes on with what may be spent on rulings once its own is spent.
     """
-    over = []
-    while heap and not finished:
+    over: list[_Candidate] = []
+    while heap and not finished and not (over and budget.spent and budget.for_rulings.spent):
         _, place = heapq.heappop(heap)
+        was_spent, before = budget.spent, budget.looks_spent
         over.append(_to_its_end(left[place], budget, finished))
+        if was_spent:
+            budget.for_rulings.spend_looks(budget.looks_spent - before + LOOKS_TO_BEGIN)
     if finished and heap:
         same = [entry for entry in heap if left[entry[1]].way.semitones == finished[0].way.semitones]
         if same:

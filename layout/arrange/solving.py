@@ -56,9 +56,19 @@ class Impossible:
 
     Attributes:
         plucks: Plucks among which those that must sound have no room; rising.
+        is_known: False where none was found, and what may be spent on rulings did not do to find out.
     """
 
     plucks: IntArray
+    is_known: bool = True
+
+
+class _NotFoundOut(Exception):
+    """Whether some plucks that must sound have room together was not found out."""
+
+    def __init__(self, plucks: IntArray) -> None:
+        super().__init__(f"{len(plucks)} plucks")
+        self.plucks = plucks
 
 
 @dataclass(slots=True, kw_only=True, eq=False)
@@ -106,7 +116,11 @@ class Solving:
         while self._waiting and looked_at < PLUCKS_AT_A_TIME:
             plucks = self._waiting.pop()
             looked_at += len(plucks)
-            group = self._part(self._steps, plucks, budget)
+            try:
+                group = self._part(self._steps, plucks, budget)
+            except _NotFoundOut as unknown:
+                self.impossible = Impossible(plucks=unknown.plucks, is_known=False)
+                return
             if group is None:
                 self.impossible = Impossible(plucks=plucks)
                 return
@@ -128,7 +142,10 @@ class Solving:
             self.some_parts(budget)
         if self.impossible is not None:
             return self.impossible
-        return self._joined_up(budget)
+        try:
+            return self._joined_up(budget)
+        except _NotFoundOut as unknown:
+            return Impossible(plucks=unknown.plucks, is_known=False)
 
     def _joined_up(self, budget: Budget) -> Solved | Impossible:
         """Parts that a choice breaks together, solved together, until nothing is broken."""
@@ -313,11 +330,21 @@ class Solving:
         """A choice that keeps every rule, near to the one preferred; None where there is none at all.
 
         Rulings are followed or refused for what is true, so where putting spots down one after the
-        other finds no room for those that must sound, they are looked for whatever that costs.
+        other finds no room for those that must sound, it is looked for with what may be spent on rulings.
+
+        Raises:
+            _NotFoundOut: That did not do.
         """
         spots = fitted(self.problem, plucks, preferred, budget)
         forced = plucks[self.problem.must_sound[plucks]]
         if spots is not None or not len(forced):
             return spots
-        found = best_coupled(self.problem, forced, Budget(), most_entries=None)
-        return None if found.spots is None else fitted(self.problem, plucks, found.spots) or found.spots
+        allowed = budget.for_rulings
+        if allowed.spent or not self._fits_a_program(forced):
+            raise _NotFoundOut(forced)
+        found = best_coupled(self.problem, forced, allowed)
+        if found.spots is not None:
+            return fitted(self.problem, plucks, found.spots, allowed) or found.spots
+        if found.bound is not None:
+            raise _NotFoundOut(forced)
+        return None

@@ -10,8 +10,8 @@ from collections.abc import Mapping, Sequence
 
 import numpy as np
 
-from layout.arrange.loads import overloads
 from layout.arrange.problem import Problem
+from layout.arrange.put_down import LoadsStanding
 
 
 def taking_turns(problem: Problem, spots: Sequence[int], at_ns: Mapping[int, int]) -> tuple[int, ...]:
@@ -41,7 +41,11 @@ class _Board:
         self.at_ns = at_ns
         # A pluck moved beside another that is nudged could be pushed by it; such tracks are left as they are.
         self._beside = {track for pair in problem.besides for track in (pair.inner_index, pair.outer_index)}
-        self._nudge_ns = int((problem.latest_ns - problem.earliest_ns).max(initial=0))
+        self._loads: LoadsStanding | None = None
+        if problem.drive is not None:
+            self._loads = LoadsStanding(problem, problem.drive, np.array(list(at_ns), dtype=np.int64))
+            for spot in at_ns:
+                self._loads.put(spot)
         self._on_track: dict[int, list[tuple[int, ...]]] = defaultdict(list)
         for spot, moment_ns in at_ns.items():
             insort(self._on_track[int(problem.track[spot])], (moment_ns, spot))
@@ -56,6 +60,9 @@ class _Board:
         row.remove((at_ns, spot))
         del self.at_ns[spot]
         best = min([spot, *equals], key=lambda one: self._rank(one, at_ns, spot))
+        if self._loads is not None and best != spot:
+            self._loads.take(spot)
+            self._loads.put(best)
         insort(self._on_track[int(self._problem.track[best])], (at_ns, best))
         self.at_ns[best] = at_ns
 
@@ -69,9 +76,9 @@ class _Board:
         row = self._on_track[track]
         place = bisect_left(row, (at_ns, spot))
         last_ns = row[place - 1][0] if place else -float("inf")
-        return not (spot == now or self._has_room(spot, at_ns)), last_ns, int(self._problem.least_ns[spot]), -track
+        return not (spot == now or self._has_room(spot, at_ns, now)), last_ns, int(self._problem.least_ns[spot]), -track
 
-    def _has_room(self, spot: int, at_ns: int) -> bool:
+    def _has_room(self, spot: int, at_ns: int, now: int) -> bool:
         problem = self._problem
         row = self._on_track[int(problem.track[spot])]
         if problem.least_ns[spot] > problem.turn_ns:
@@ -86,18 +93,17 @@ class _Board:
             pluck = self._problem.pluck
             if (place and pluck[before] > pluck[spot]) or (place < len(row) and pluck[spot] > pluck[after]):
                 return False
-        return self._is_carried(spot, at_ns)
+        return self._is_carried(spot, now)
 
-    def _is_carried(self, spot: int, at_ns: int) -> bool:
-        """Whether the drive carries the spot beside all that stand."""
-        problem = self._problem
-        if problem.drive is None:
+    def _is_carried(self, spot: int, now: int) -> bool:
+        """Whether the drive carries the spot beside all that stand, its equal that stands now taken away."""
+        problem, loads = self._problem, self._loads
+        if loads is None or problem.drive is None:
             return True
-        reach_ns = 2 * problem.drive.widest_ns + self._nudge_ns
-        near = [spot]
-        for turn_ns in (-problem.turn_ns, 0, problem.turn_ns):
-            for row in self._on_track.values():
-                first = bisect_left(row, (at_ns + turn_ns - reach_ns,))
-                last = bisect_left(row, (at_ns + turn_ns + reach_ns,))
-                near += [one for _, one in row[first:last]]
-        return not overloads(problem, np.array(near, dtype=np.int64))
+        lifts = problem.drive.lifts
+        if lifts[int(problem.track[spot])] == lifts[int(problem.track[now])]:
+            return True
+        loads.take(now)
+        fits = loads.fits(spot)
+        loads.put(now)
+        return fits

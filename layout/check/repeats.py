@@ -5,8 +5,8 @@ import math
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged
-from layout.check.worth import radius_pointer
+from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged, told_worth, unsure_advice
+from layout.check.worth import radius_pointer, reach_unsure_mm
 from layout.documents.movement import StarWheel
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.star_wheel import touch_zone_mm
@@ -131,27 +131,42 @@ def rest_is_clear(disc: Disc) -> list[Finding]:
     """An error for a projection that stands on its star wheel while the disc is at rest.
 
     Judged by arc on every track, from where a working edge may first touch a point to where the
-    end of its standing body has left it.
+    end of its standing body has left it. Where all are clear, but one by less than its numbers are worth, one advice.
     """
-    past_mm, before_mm, after_mm = _at_rest(disc)
-    clear_mm = np.maximum(before_mm - past_mm, past_mm - after_mm)
-    return [
-        Finding(
-            code=Code.REST_NOT_CLEAR,
-            level=Level.ERROR,
-            message=(
-                f"At rest the working edge of a projection on track {int(disc.track_index[index]) + 1} stands "
-                f"{past_mm[index]:.3f} mm past the row; it may touch its star wheel from {before_mm[index]:.3f} "
-                f"to {after_mm[index]:.3f} mm."
-            ),
-            measured=float(clear_mm[index]),
-            limit=0.0,
-            unit="mm",
-            at=_at(disc, (int(index),)),
-            remedy="Leave the note out, or give the movement a wider rest sector (before_music_deg, after_music_deg).",
-        )
-        for index in np.flatnonzero(clear_mm < -GRAIN_MM)[:MOST_FINDINGS]
-    ]
+    arcs_mm = _at_rest(disc)
+    clear_mm = np.maximum(arcs_mm[1] - arcs_mm[0], arcs_mm[0] - arcs_mm[2])
+    unsure_mm = np.zeros(len(disc.movement.tracks))
+    unsure_mm[disc.used_tracks] = [reach_unsure_mm(disc, index) for index in disc.used_tracks]
+    sure_mm = clear_mm - unsure_mm[disc.track_index]
+    hit = np.flatnonzero(clear_mm < -GRAIN_MM)
+    if len(hit) or not len(sure_mm) or sure_mm.min() >= 0:
+        return [
+            _stands_at_rest(disc, int(index), arcs_mm, float(unsure_mm[disc.track_index[index]]))
+            for index in hit[:MOST_FINDINGS]
+        ]
+    nearest = int(np.argmin(sure_mm))
+    return [unsure_advice(_stands_at_rest(disc, nearest, arcs_mm, float(unsure_mm[disc.track_index[nearest]])))]
+
+
+def _stands_at_rest(
+    disc: Disc, index: int, arcs_mm: tuple[FloatArray, FloatArray, FloatArray], unsure_mm: float
+) -> Finding:
+    past_mm, before_mm, after_mm = (float(arc[index]) for arc in arcs_mm)
+    clear_mm = max(before_mm - past_mm, past_mm - after_mm)
+    return Finding(
+        code=Code.REST_NOT_CLEAR,
+        level=Level.ERROR,
+        message=(
+            f"At rest the working edge of a projection on track {int(disc.track_index[index]) + 1} stands "
+            f"{past_mm:.3f} mm past the row; it may touch its star wheel from {before_mm:.3f} to {after_mm:.3f} mm."
+            + told_worth(clear_mm, unsure_mm, "mm", fails=clear_mm < -GRAIN_MM)
+        ),
+        measured=clear_mm,
+        limit=0.0,
+        unit="mm",
+        at=_at(disc, (index,)),
+        remedy="Leave the note out, or give the movement a wider rest sector (before_music_deg, after_music_deg).",
+    )
 
 
 def _at_rest(disc: Disc) -> tuple[FloatArray, FloatArray, FloatArray]:

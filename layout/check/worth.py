@@ -1,5 +1,10 @@
 """How far sizes of metal on a disc may be off, by what the movement states of its numbers' worth."""
 
+import math
+from itertools import product
+
+from layout.documents.movement import StarWheel
+from layout.mechanics.star_wheel import depth_band_mm
 from layout.place.disc import Disc
 
 WIDTH = "/projection/width_mm"
@@ -50,3 +55,28 @@ def most_web_unsure_mm(disc: Disc) -> float:
     worth = disc.movement.plus_minus
     radius_mm = max((worth(radius_pointer(index)) for index in disc.used_tracks), default=0.0)
     return max(2 * radius_mm + worth(WIDTH), along_unsure_mm(disc))
+
+
+def reach_unsure_mm(disc: Disc, track_index: int) -> float:
+    """How far the ends of the stretch in which a working edge can touch a point may be off, on a track.
+
+    Measured arcs by their own worth; of a computed wheel √(R² − (H − p)²), at the greatest depth, by the worst of
+    every way its numbers may be off.
+    """
+    movement, worth = disc.movement, disc.movement.plus_minus
+    wheel, of_track = movement.star_wheel, f"/tracks/{track_index}"
+    if movement.tracks[track_index].engagement_arc_mm is not None:
+        return worth(f"{of_track}/engagement_arc_mm") + worth(f"{of_track}/release_arc_mm")
+    if not isinstance(wheel, StarWheel):
+        return worth("/star_wheel/engagement_arc_mm") + worth("/star_wheel/release_arc_mm")
+    depths = ("/projection/depth_mm", "/projection/depth_plus_minus_mm", "/disc/flatness_mm")
+    gap_off_mm = worth("/star_wheel/axis_depth_mm") + sum(map(worth, depths))
+    tip_off_mm, gap_mm = worth("/star_wheel/tip_radius_mm"), wheel.axis_depth_mm - depth_band_mm(movement)[1]
+
+    def reach_mm(tip_mm: float, gap_mm: float) -> float:
+        return math.sqrt(max(tip_mm**2 - max(gap_mm, 0.0) ** 2, 0.0))
+
+    return max(
+        abs(reach_mm(wheel.tip_radius_mm + tip, gap_mm + gap) - reach_mm(wheel.tip_radius_mm, gap_mm))
+        for tip, gap in product((-tip_off_mm, tip_off_mm), (-gap_off_mm, gap_off_mm))
+    )

@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from layout.arrange.arrangement import Arrangement
+from layout.arrange.arrangement import Arrangement, Stopped
 from layout.check.finding import Finding, stands
 from layout.place.disc import Disc
 from layout.play.plucks import Plucks
@@ -46,6 +46,11 @@ class LaidOut:
     def good_to_cut(self) -> bool:
         """Whether no error-level finding stands."""
         return not stands(self.findings)
+
+    @property
+    def stopped(self) -> Stopped | None:
+        """What ended the search for the arrangement too early, if anything did."""
+        return self.arrangement.worth.stopped
 
     @property
     def part(self) -> str:

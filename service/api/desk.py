@@ -2,9 +2,11 @@
 
 import logging
 import time
+from collections.abc import Callable
 
 from service.api.layout_cache import KeptLayout, LayoutCache
 from service.documents import Inputs
+from service.limits import Limits
 from service.planner import AnyPlanner, Layout
 
 log = logging.getLogger("discwright")
@@ -13,8 +15,24 @@ log = logging.getLogger("discwright")
 class LayoutDesk:
     """Gives layouts, from the cache where it can."""
 
-    def __init__(self, planner: AnyPlanner, cache: LayoutCache) -> None:
+    def __init__(
+        self,
+        planner: AnyPlanner,
+        cache: LayoutCache,
+        limits: Limits | None = None,
+        clock: Callable[[], float] = time.monotonic,
+    ) -> None:
+        """Open the desk.
+
+        Args:
+            planner: Computes layouts.
+            cache: Keeps them.
+            limits: Read for the longest search.
+            clock: Seconds, only ever forward.
+        """
         self._planner = planner
+        self._most_s = (limits or Limits()).search_s
+        self._clock = clock
         self._cache = cache
         self._latest: tuple[Layout, ...] = ()  # to mark the files of layouts just made without making them again
 
@@ -25,6 +43,9 @@ class LayoutDesk:
 
     def lay_out_discs(self, inputs: Inputs, owner_id: str | None = None) -> tuple[KeptLayout, ...]:
         """The layouts of these inputs, one for each disc, in order, kept from now on.
+
+        Those whose search the service stopped before the settings would have are not kept: they need not be
+        the best, and a search on a less busy machine may find better.
 
         Args:
             inputs: What they are made from.
@@ -43,7 +64,11 @@ class LayoutDesk:
         kept = tuple(layout for layout in found if layout is not None and layout.inputs == inputs)
         if len(kept) == len(fingerprints):
             return kept
-        kept = tuple(self._kept(laid_out, inputs, owner_id) for laid_out in self._compute(inputs))
+        computed = self._compute(inputs)
+        kept = tuple(self._kept(laid_out, inputs, owner_id) for laid_out in computed)
+        if self._cut_short(inputs, computed):
+            log.info("stopped after %d s and not kept: %s", self._most_s, kept[0].fingerprint)
+            return kept
         for layout in kept:
             self._cache.put(layout)
             log.info("laid out %s", layout.fingerprint)
@@ -76,5 +101,14 @@ class LayoutDesk:
     def _compute(self, inputs: Inputs) -> tuple[Layout, ...]:
         read = inputs.read()
         documents = (read.movement, read.cutter, read.settings)
-        self._latest = self._planner.lay_out_discs(inputs.tune, *documents, time.monotonic)
-        return self._latest
+        computed: tuple[Layout, ...] = self._planner.lay_out_discs(
+            inputs.tune, *documents, self._clock, most_s=self._most_s
+        )
+        self._latest = computed  # what threads beside this one compute may stand there next
+        return computed
+
+    def _cut_short(self, inputs: Inputs, computed: tuple[Layout, ...]) -> bool:
+        """Whether the service's limit, and not the settings', has stopped the search for these layouts."""
+        asked_s = inputs.read().settings.time_limit_s
+        by_service = asked_s is None or asked_s > self._most_s
+        return by_service and any(layout.stopped == "time" for layout in computed)

@@ -33,11 +33,18 @@ class TimedPlanner:
         self._watch = watch
 
     def lay_out_discs(
-        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+        self,
+        tune: bytes,
+        movement: Movement,
+        cutter: Cutter,
+        settings: Settings,
+        clock: Clock | None = None,
+        *,
+        most_s: float | None = None,
     ) -> tuple[Any, ...]:
         """As the planner does."""
         with self._watch.timing("laying-out"):
-            return self._planner.lay_out_discs(tune, movement, cutter, settings, clock)
+            return self._planner.lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
 
     def fingerprint_of(
         self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1

@@ -5,7 +5,7 @@ import json
 import shutil
 import tempfile
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cache
 from pathlib import Path
 from typing import Any
@@ -140,6 +140,7 @@ class FakeLayout:
     disc_number: int = 1
     disc_count: int = 1
     score: None = None
+    stopped: str | None = None
 
 
 @dataclass
@@ -177,6 +178,7 @@ class FakePlanner:
     findings: tuple[Finding, ...] = ()
     faulty_disc: int | None = None  # the disc of a set that has the findings; None: every one
     title: str = "Harvest Dance"
+    needs_s: float = 0.0  # what a search takes that nothing stops
     laid_out_count: int = 0
 
     def fingerprint_of(self, tune: bytes, movement: Any, cutter: Any, settings: Any, number: int = 1) -> str:
@@ -184,14 +186,17 @@ class FakePlanner:
         return f"{sum((place + 1) * ord(letter) for place, letter in enumerate(seen)):016x}"
 
     def lay_out_discs(
-        self, tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None
+        self, tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None, *, most_s: float | None = None
     ) -> tuple[FakeLayout, ...]:
         self.laid_out_count += 1
+        limits_s = [limit_s for limit_s in (settings.time_limit_s, most_s) if limit_s is not None]
+        stopped = "time" if self.needs_s > min(limits_s, default=self.needs_s) else None
         assert clock is None or clock() <= clock()
         if not tune.startswith(b"MThd"):
             raise MidiReadError(byte_offset=0, found="'not '", expected="the header chunk", remedy="export it again")
         return tuple(
-            self._laid_out(tune, movement, cutter, settings, number) for number in range(1, settings.discs + 1)
+            replace(self._laid_out(tune, movement, cutter, settings, number), stopped=stopped)
+            for number in range(1, settings.discs + 1)
         )
 
     def _laid_out(self, tune: bytes, movement: Any, cutter: Any, settings: Any, number: int) -> FakeLayout:

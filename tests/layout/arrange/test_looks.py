@@ -32,7 +32,7 @@ def test_looks_are_spent_until_none_are_left() -> None:
 
     assert (budget.looks_left, budget.looks_spent, budget.stopped) == (1, 4, None)
     budget.spend_looks(4)
-    assert (budget.looks_left, budget.looks_spent, budget.stopped) == (0, 5, "nodes")
+    assert (budget.looks_left, budget.looks_spent, budget.stopped) == (0, 8, "nodes")
 
 
 def test_a_program_takes_looks_for_its_beginning_its_loads_and_its_entries() -> None:

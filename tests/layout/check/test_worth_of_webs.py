@@ -12,7 +12,7 @@ from layout.check.blank import (
     webs_to_the_centre_hole_hold,
     webs_to_the_rim_hold,
 )
-from layout.check.repeats import dampers_recover, star_wheels_keep_up
+from layout.check.repeats import dampers_recover, rest_is_clear, star_wheels_keep_up
 from layout.check.sideways import neighbours_are_not_fouled, own_star_is_met
 from layout.check.webs import webs_between_openings_hold
 from tests.layout.examples import disc_of, movement_with
@@ -231,3 +231,36 @@ def test_a_damper_stands_on_its_recovery_and_on_the_fastest_turn(changes: dict[s
 
     assert [finding.code for finding in found] == [Code.MARGIN_UNSURE] * bool(unsure)
     assert all(f"It holds by 0.050 s, less than the ±{unsure} s {STANDS_ON}" in finding.message for finding in found)
+
+
+def test_a_rest_stands_on_how_far_a_point_reaches() -> None:
+    # The reach is √(3.2² − (3.75 − 1.56)²) = 2.3332 mm, 2.3340 round a radius of 50 mm, where
+    # 3° are 2.6180: clear by 0.284 mm.
+    def told(before_deg: float, **changes: Any) -> list[Finding]:
+        movement = movement_with({"before_music_deg": before_deg, **changes})
+        return rest_is_clear(disc_of(movement, [(1, 0.0), (3, 0.0), (1, 5.0)]))
+
+    # With a tip of 2.95 mm it is √(2.95² − 2.19²) = 1.9765, 0.357 less; with one of 3.45 it is 0.333 more.
+    [tip] = told(3.0, **{"star_wheel/tip_radius_mm": worth(3.2, 0.25)})
+    # 0.3 mm nearer the axis: √(3.2² − 1.89²) − 2.3332 = 0.249; further off it is 2.0100, 0.323 less.
+    [depth] = told(3.0, **{"projection/depth_mm": worth(1.41, 0.3)})
+    # 2.6° are 2.2689 mm: it stands 0.065 mm on its wheel.
+    [fails] = told(2.6, **{"star_wheel/axis_depth_mm": worth(3.75, 0.1)})
+
+    assert (tip.code, tip.level, tip.at.projections) == (Code.MARGIN_UNSURE, Level.ADVICE, (0,))
+    assert tip.message.endswith(f" It holds by 0.284 mm, less than the ±0.357 mm {STANDS_ON}")
+    assert depth.message.endswith(f"less than the ±0.323 mm {STANDS_ON}")
+    assert fails.code is Code.REST_NOT_CLEAR
+    assert " It fails by 0.065 mm, less than the ±0.09" in fails.message
+    assert told(3.0, **{"star_wheel/tip_radius_mm": worth(3.2, 0.1)}) == told(3.0) == []
+
+
+def test_a_rest_of_measured_arcs_stands_on_both() -> None:
+    arcs = {"tracks/0/engagement_arc_mm": worth(3.2, 0.3), "tracks/0/release_arc_mm": worth(0.0, 0.2)}
+    # The edge may touch from 3.2 mm before the row; 4° on a radius of 50 mm are 3.491.
+    movement = movement_with({"before_music_deg": 4.0, **arcs})
+
+    [finding] = rest_is_clear(disc_of(movement, [(1, 0.0)]))
+
+    assert finding.code is Code.MARGIN_UNSURE
+    assert f"less than the ±0.500 mm {STANDS_ON}" in finding.message

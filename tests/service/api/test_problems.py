@@ -22,14 +22,14 @@ FORM = "multipart/form-data; boundary=xx"
 class FailingPlanner(FakePlanner):
     """Fails as a program with a fault does, and tells a secret doing so."""
 
-    def lay_out_discs(self, *_: Any) -> Any:
+    def lay_out_discs(self, *_: Any, most_s: float | None = None) -> Any:
         raise ZeroDivisionError("the secret of line 7")
 
 
 class ContradictedPlanner(FakePlanner):
     """Finds two rulings that contradict each other."""
 
-    def lay_out_discs(self, *_: Any) -> Any:
+    def lay_out_discs(self, *_: Any, most_s: float | None = None) -> Any:
         fault = Fault(pointer="/rulings/1", message="note 4 is placed and left out")
         raise RulingError(document="settings", problems=(fault,))
 
