@@ -2,14 +2,12 @@
 
 import threading
 from collections.abc import Callable
-from datetime import timedelta
 
 from service.access.browsers import sweep_browsers
 from service.background.chores import Chore
 from service.background.worker import Worker, work_until_told
-from service.hooks.deliveries import forget_deliveries
 from service.hooks.telling import tell_hooks
-from service.orders.kept_answers import forget_answers
+from service.orders.retention import keep_retention
 from service.parts import Parts
 from service.store.holds import sweep_files
 
@@ -47,18 +45,17 @@ def chores_of(parts: Parts) -> tuple[Chore, ...]:
     """
     store, retention = parts.store, parts.settings.retention
 
-    def forget_old_deliveries() -> None:
-        with store.writing() as session:
-            forget_deliveries(session, store.now(session) - timedelta(days=retention.deliveries_days))
-
     def sweep_old_browsers() -> None:
         with store.reading() as session:
             now = store.now(session)
         sweep_browsers(store, now)
 
     return (
-        Chore(name="forget answers", every_s=HOUR_S, work=lambda: _done(forget_answers(store))),
-        Chore(name="forget messages to hooks", every_s=HOUR_S, work=forget_old_deliveries),
+        Chore(
+            name="let go of what has been kept long enough",
+            every_s=HOUR_S,
+            work=lambda: _done(keep_retention(store, parts.files, retention)),
+        ),
         Chore(name="forget browsers", every_s=HOUR_S, work=sweep_old_browsers),
         Chore(
             name="remove files that nobody holds",
