@@ -7,7 +7,7 @@ import tempfile
 from collections.abc import Mapping
 from pathlib import Path
 
-from layout.walk import CUTTING_FILES
+from layout.file_names import CUTTING_FILES
 from service.commands.errors import CommandError
 
 
