@@ -20,8 +20,8 @@ KINDS = (
         name="document-not-own",
         status=409,
         title="The document is not this owner's",
-        what_to_do="Documents of the shop, and those that ship, cannot be withdrawn. To use another in their place, PUT "
-        "one of your own under the same id.",
+        what_to_do="Documents of the shop, and those that ship, cannot be withdrawn. To use another in their place, "
+        "PUT one of your own under the same id.",
     ),
     ProblemKind(
         name="key-for-tests",
