@@ -4,6 +4,7 @@ from collections.abc import Mapping
 
 from layout.documents.sheets import LIMITS, SheetJob
 from layout.errors import DocumentError, DrawingReadError, Problem
+from layout.file_names import PARTS_FILE, PLAN_FILE
 from layout.limits import limits_told
 from layout.mechanics.drawn import DrawnDisc
 from layout.read_back.as_drawn import read_as_drawn
@@ -12,8 +13,6 @@ from layout.sheets.plan import SheetPlan
 from layout.write.sheet_dxf import write_sheet_dxf
 from layout.write.sheet_json import drawing_name, write_sheets_json
 from layout.write.sheet_parts import write_parts
-
-PLAN_FILE, PARTS_FILE = "sheets.json", "parts.csv"
 
 LIMITS_OF_SHEETS = limits_told(LIMITS, prefix="sheet_job_")
 

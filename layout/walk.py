@@ -21,6 +21,7 @@ from layout.cut.plan import CutPlan
 from layout.cut.wording import Words
 from layout.documents import Cutter, Movement, Settings
 from layout.errors import DocumentError, Problem
+from layout.file_names import CUTTING_FILES, files_for
 from layout.limits import limits_told
 from layout.making import Making, making_of
 from layout.mechanics.projection import pattern_of
@@ -47,20 +48,6 @@ from layout.write import (
 )
 from layout.write.laid_out import LaidOut
 from layout.write.work_sheet import write_work_sheet
-
-PRESS_FILES = ("press.nc",)  # only where a press cuts
-CUTTING_FILES = ("disc.dxf", "hits.csv", *PRESS_FILES)
-FILES = (
-    "disc.dxf",
-    "record.dxf",
-    "disc.svg",
-    "hits.csv",
-    "press.nc",
-    "work-sheet.pdf",
-    "layout.json",
-    "report.json",
-    "making.json",
-)
 
 _NOT_ASKED = ("outside-passage", "ruled-out")
 
@@ -235,11 +222,6 @@ def _whole_tune(score: Score, arrangements: tuple[Arrangement, ...]) -> WholeTun
     )
     asked = np.setdiff1d(np.arange(score.note_count), np.fromiter(never, dtype=np.int64))
     return WholeTune(onset_s=score.onset_s[asked], from_s=arrangements[0].from_s, disc_count=len(arrangements))
-
-
-def files_for(cutter: Cutter) -> tuple[str, ...]:
-    """The names of the files a layout for this cutter has, cutting files included."""
-    return tuple(name for name in FILES if cutter.kind == "punch-press" or name not in PRESS_FILES)
 
 
 def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:

@@ -2,17 +2,18 @@
 
 import threading
 from collections.abc import Callable
-from datetime import timedelta
 
 from service.access.browsers import sweep_browsers
 from service.background.chores import Chore
+from service.background.queue import Queue
 from service.background.worker import Worker, work_until_told
-from service.hooks.deliveries import forget_deliveries
 from service.hooks.telling import tell_hooks
-from service.orders.kept_answers import forget_answers
+from service.orders.retention import keep_retention
+from service.orders.run_opening import RunOpener
 from service.parts import Parts
-from service.store.holds import sweep_files
+from service.store.holds import FileKeeper, sweep_files
 
+OPEN_S = 1.0  # s; how soon a run is begun, and how often it is looked whether more of it may wait
 MINUTE_S = 60.0
 HOUR_S = 3600.0
 FILES_AT_A_TIME = 500  # files removed before others get a turn; what is left is removed the next time
@@ -46,10 +47,8 @@ def chores_of(parts: Parts) -> tuple[Chore, ...]:
         parts: What is kept, and for how long.
     """
     store, retention = parts.store, parts.settings.retention
-
-    def forget_old_deliveries() -> None:
-        with store.writing() as session:
-            forget_deliveries(session, store.now(session) - timedelta(days=retention.deliveries_days))
+    keeper, queue = FileKeeper(store, parts.files), Queue(parts.settings.queue_url)
+    opener = RunOpener(store, keeper, queue.send, parts.settings.limits)
 
     def sweep_old_browsers() -> None:
         with store.reading() as session:
@@ -57,8 +56,12 @@ def chores_of(parts: Parts) -> tuple[Chore, ...]:
         sweep_browsers(store, now)
 
     return (
-        Chore(name="forget answers", every_s=HOUR_S, work=lambda: _done(forget_answers(store))),
-        Chore(name="forget messages to hooks", every_s=HOUR_S, work=forget_old_deliveries),
+        Chore(name="open runs", every_s=OPEN_S, work=opener.open_all),
+        Chore(
+            name="let go of what has been kept long enough",
+            every_s=HOUR_S,
+            work=lambda: _done(keep_retention(store, parts.files, retention)),
+        ),
         Chore(name="forget browsers", every_s=HOUR_S, work=sweep_old_browsers),
         Chore(
             name="remove files that nobody holds",

@@ -15,7 +15,7 @@ from typing import get_args
 import ezdxf
 import pytest
 
-from layout import walk
+from layout import file_names, walk
 from layout.arrange.arrangement import LeftOutReason
 from layout.documents import Cutter, Settings, shipped_cutter, shipped_movement
 from layout.documents.cutter import Fold
@@ -32,7 +32,7 @@ BLOCKS = re.findall(r"```sh\n(.*?)```", README, flags=re.DOTALL)
 CURL = [command for block in BLOCKS for command in re.findall(r"^curl .*?[^\\]$", block, re.DOTALL | re.MULTILINE)]
 COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith(("discwright ", "printf "))]
 
-LASER_FILES = walk.files_for(shipped_cutter("fibre-laser"))
+LASER_FILES = file_names.files_for(shipped_cutter("fibre-laser"))
 TRIAL_FILES = {"trial-piece.dxf", "trial-piece.svg", "trial-piece.json", "measure.pdf"}
 # What the archives of the examples hold, their names in order.
 ARCHIVES = {
@@ -106,7 +106,7 @@ def test_a_curl_line_of_the_readme_works(command: str, address: str, tmp_path: P
         assert "<svg" in (tmp_path / told[1]).read_text()
     else:
         made_for = "turn-press" if "cutter=turn-press" in command else "fibre-laser"
-        assert set(walk.files_for(shipped_cutter(made_for))) == set(
+        assert set(file_names.files_for(shipped_cutter(made_for))) == set(
             json.loads((tmp_path / told[1]).read_text())["links"]
         )
 
@@ -145,7 +145,7 @@ def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:
 def test_every_file_stands_in_the_readme() -> None:
     rows = re.findall(r"^\| `([\w.-]+\.\w+)` \|", README, flags=re.MULTILINE)
 
-    assert sorted(rows) == sorted(walk.FILES)
+    assert sorted(rows) == sorted(file_names.FILES)
 
 
 def test_the_settings_shown_are_the_defaults() -> None:

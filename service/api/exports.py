@@ -5,7 +5,9 @@ from flask import Blueprint, Response, request
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.asking import needs
+from service.api.describing import describes
 from service.api.models.exports import ExportQuery
+from service.api.operations import exports
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
 from service.api.zip_stream import Packed, zip_stream
@@ -24,6 +26,7 @@ def export_routes(parts: Parts) -> Blueprint:
     routes = Blueprint("exports", __name__, url_prefix="/v1/export")
 
     @routes.get("")
+    @describes(exports.EXPORT)
     @needs(Scope.ADMIN)
     def export(asker: Asker) -> Response:
         query = read_arguments(request, ExportQuery)

@@ -10,7 +10,7 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
-from layout.walk import CUTTING_FILES, FILES, files_for
+from layout.file_names import CUTTING_FILES, FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of

@@ -5,12 +5,12 @@ The job is the body as JSON, or the part `job` of a multipart form. In a form, d
 """
 
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from flask import Blueprint, Request, Response, request
 
 from layout.documents.sheets import LIMITS, read_sheet_job
-from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
-from layout.sheets.plan import SheetPlan
+from layout.file_names import PLAN_FILE
 from service.access.scopes import Scope
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import open_on_loopback
@@ -22,9 +22,13 @@ from service.api.multipart import ID, parts_of
 from service.api.operations import layouts
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
+from service.computation import plan_sheets, sheet_files_of
 from service.download_names import slug
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE
+
+if TYPE_CHECKING:
+    from layout.sheets.plan import SheetPlan
 
 ANSWERS = (JSON_MEDIA_TYPE, ZIP_MEDIA_TYPE)
 FORM_MEDIA_TYPE = "multipart/form-data"
@@ -129,6 +133,6 @@ def _from_form(asked: Request, limits: Limits) -> _Posted:
     return _Posted(job=job, drawings={name.removeprefix(DRAWING_PART): dxf for name, dxf in parts.items()})
 
 
-def _archive_name(plan: SheetPlan) -> str:
+def _archive_name(plan: "SheetPlan") -> str:
     title = slug(plan.title, LONGEST_TITLE) or "untitled"
     return f"{'' if plan.complete else 'NOT-ALL-PLACED_'}{title}_sheets_mm_{plan.fingerprint}.zip"

@@ -7,7 +7,6 @@ from dataclasses import dataclass
 from flask import Blueprint, Request, Response, request
 
 from layout.documents import Cutter, Movement
-from layout.trial_walk import trial_files
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
@@ -21,6 +20,7 @@ from service.api.operations import layouts
 from service.api.posted import machines_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
+from service.computation import trial_files
 from service.documents import cutter_from, kept_for, movement_from
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE

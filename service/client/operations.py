@@ -108,6 +108,11 @@ class Operations:
         path = "/v1/events"
         return self._caller.send("GET", path, query=query)
 
+    def export_owner(self, query: Query | None = None) -> Answer:
+        """All that is kept of one owner."""
+        path = "/v1/export"
+        return self._caller.send("GET", path, query=query)
+
     def list_hooks(self) -> shapes.HooksAnswer:
         """The hooks there are."""
         path = "/v1/hooks"

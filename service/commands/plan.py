@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from layout.documents import Cutter, Movement
-from layout.walk import CUTTING_FILES, files_for
+from layout.file_names import CUTTING_FILES, files_for
 from service.commands.arguments import OneLineParser, Tools, add_json, add_movement_and_cutter, folder
 from service.commands.disc_folders import disc_folders, earlier_folders
 from service.commands.errors import ERROR_STANDS, GOOD, CommandError

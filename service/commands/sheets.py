@@ -7,7 +7,8 @@ from pathlib import Path
 from typing import Any
 
 from layout.documents.sheets import read_sheet_job
-from layout.sheet_walk import PLAN_FILE, plan_sheets, sheet_files_of
+from layout.file_names import PLAN_FILE
+from layout.sheet_walk import plan_sheets, sheet_files_of
 from service.commands.arguments import OneLineParser, Tools, add_json, folder
 from service.commands.errors import ERROR_STANDS, GOOD, CommandError
 from service.commands.files_in import read_file

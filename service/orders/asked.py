@@ -5,8 +5,8 @@ from dataclasses import dataclass
 from sqlalchemy.orm import Session
 
 from layout.documents import Cutter, Movement, Settings, read_cutter, read_movement, read_settings
-from layout.walk import check_tune
 from service.access.asker import Asker
+from service.computation import check_tune
 from service.orders.faults import InputRefusedError
 from service.orders.planned import OrderInputs
 from service.store.documents import KeptDocument, document_in_force

@@ -6,8 +6,8 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from layout.documents import Cutter, Movement, read_cutter, read_movement, read_settings
+from layout.file_names import CUTTING_FILES, FILES
 from layout.version import ENGINE_VERSION
-from layout.walk import CUTTING_FILES, FILES
 from service.download_names import NamedDisc, download_name
 from service.media_types import MEDIA_TYPES
 from service.orders.planned import OrderInputs, PlannedFile, PlannedOrder

@@ -5,8 +5,8 @@ from dataclasses import dataclass
 from typing import Any
 
 from layout.documents import read_settings
-from layout.walk import check_tune
 from service.access.asker import Asker
+from service.computation import check_tune
 from service.orders.faults import InputRefusedError, StateForbidsError
 from service.orders.finding import order_row
 from service.store.documents import document_in_force

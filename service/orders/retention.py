@@ -28,7 +28,6 @@ from service.store.tables import Order, PlanFile, RunItem
 
 log = logging.getLogger(__name__)
 
-EVERY_S = 3600  # s; times are counted in days
 MOST_AT_A_TIME = 100  # orders of one transaction: some tens of milliseconds
 MOST_FILES = 10_000  # files swept at a time; the rest an hour later
 

@@ -4,7 +4,7 @@ from functools import cache
 import numpy as np
 import pytest
 
-from layout import walk
+from layout import file_names, walk
 from layout.check import Code
 from layout.documents import read_settings
 from layout.errors import DocumentError
@@ -61,7 +61,7 @@ def test_each_disc_read_back_plays_its_part() -> None:
 def test_every_file_of_a_set_is_there_and_says_which_disc_it_is() -> None:
     files = walk.files_of(two_discs()[1])
 
-    assert set(files) == set(walk.files_for(LASER))
+    assert set(files) == set(file_names.files_for(LASER))
     assert json.loads(files["layout.json"])["disc"] == {"number": 2, "of": 2}
     assert json.loads(files["report.json"])["disc"] == {"number": 2, "of": 2}
     for drawing in ("disc.dxf", "record.dxf"):

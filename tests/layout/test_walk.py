@@ -2,7 +2,7 @@ import json
 
 import pytest
 
-from layout import walk
+from layout import file_names, walk
 from layout.check.finding import Code
 from layout.documents import Movement, read_movement, read_settings
 from layout.errors import MidiReadError
@@ -76,7 +76,7 @@ def test_a_reason_gives_every_file_and_marks_it() -> None:
 
     given = walk.files_of(too_long, not_good="only to measure the fold")
 
-    assert set(given) == set(walk.files_for(LASER))
+    assert set(given) == set(file_names.files_for(LASER))
     assert given["disc.dxf"].startswith(b"999\nNOT GOOD TO CUT: only to measure the fold\n")
     assert b"NOT GOOD TO CUT" in given["disc.svg"]
 
@@ -84,8 +84,8 @@ def test_a_reason_gives_every_file_and_marks_it() -> None:
 def test_a_press_has_a_program_and_it_is_kept_back_like_what_it_strikes() -> None:
     good, too_long = (walk.lay_out(demo_tune(), movement, PRESS, DEFAULTS) for movement in (SHIPPED[0], SHIPPED[2]))
 
-    assert set(walk.files_of(good)) == set(walk.FILES) == set(walk.files_for(PRESS))
-    assert set(walk.FILES) - set(walk.files_of(too_long)) == set(walk.CUTTING_FILES)
+    assert set(walk.files_of(good)) == set(file_names.FILES) == set(file_names.files_for(PRESS))
+    assert set(file_names.FILES) - set(walk.files_of(too_long)) == set(file_names.CUTTING_FILES)
     assert b"NOT GOOD TO CUT" in walk.files_of(too_long, not_good="a test")["press.nc"]
 
 
@@ -96,7 +96,7 @@ def test_a_press_without_a_tool_that_fits_has_every_file_where_a_person_asks_for
     given = walk.files_of(without, not_good="to look at")
 
     assert not without.good_to_cut
-    assert set(given) == set(walk.FILES)
+    assert set(given) == set(file_names.FILES)
 
 
 def test_a_reason_marks_nothing_on_a_disc_that_is_good_to_cut() -> None:

@@ -11,7 +11,7 @@ from pathlib import Path
 import pytest
 
 from layout.documents import shipped_cutter
-from layout.walk import files_for
+from layout.file_names import files_for
 from service.settings import every_variable
 
 TOP = Path(__file__).parents[2]

@@ -65,3 +65,17 @@ def test_an_answer_that_is_not_described_is_seen(world: World, document: Any) ->
     answer.headers["Told-To-Nobody"] = "yes"
     with pytest.raises(AssertionError):
         assert_described(document, limits, answer)
+
+
+def test_messages_to_hooks_are_as_the_document_s_webhooks_say(world: World, document: Any) -> None:
+    hook_id = world.given("a hook")["hook_id"]
+    world.given("an order")
+    world.post(f"/v1/hooks/{hook_id}/test")
+    told = world.http.get(f"/v1/hooks/{hook_id}/deliveries", headers=world.headers).json
+
+    assert told is not None
+    messages = {one["message"]["type"]: one["message"] for one in told["deliveries"]}
+    assert set(messages) == {"order.received", "hook.test"}
+    for kind, message in messages.items():
+        schema = document["webhooks"][kind]["post"]["requestBody"]["content"]["application/json"]["schema"]
+        jsonschema.Draft202012Validator({**schema, "components": document["components"]}).validate(message)

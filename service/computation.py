@@ -1,0 +1,43 @@
+"""Parts of the computation that are asked for beside layouts, each imported when it is first asked for.
+
+The computation takes a second to import, with its libraries for drawings; a service is to answer before that.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from layout.documents import Cutter, Movement, Settings
+    from layout.documents.sheets import SheetJob
+    from layout.sheets.plan import SheetPlan
+
+
+def check_tune(tune: bytes, settings: Settings) -> None:
+    """As `layout.walk.check_tune`."""
+    from layout.walk import check_tune as check  # noqa: PLC0415 -- as the module says
+
+    check(tune, settings)
+
+
+def plan_sheets(job: SheetJob, drawings: Mapping[str, bytes] | None = None) -> SheetPlan:
+    """As `layout.sheet_walk.plan_sheets`."""
+    from layout.sheet_walk import plan_sheets as plan  # noqa: PLC0415 -- as the module says
+
+    return plan(job, drawings)
+
+
+def sheet_files_of(plan: SheetPlan) -> dict[str, bytes]:
+    """As `layout.sheet_walk.sheet_files_of`."""
+    from layout.sheet_walk import sheet_files_of as files  # noqa: PLC0415 -- as the module says
+
+    return files(plan)
+
+
+def trial_files(movement: Movement, cutter: Cutter) -> dict[str, bytes]:
+    """As `layout.trial_walk.trial_files`."""
+    from layout.trial_walk import trial_files as files  # noqa: PLC0415 -- as the module says
+
+    return files(movement, cutter)
