@@ -20,6 +20,7 @@ from layout.mechanics.arrays import IntArray
 # Entries of the rows of one program. Real music makes programs of up to some ten thousand; one of several times
 # MOST_ENTRIES keeps HiGHS busy for minutes before its first node, where no budget of nodes can stop it.
 MOST_ENTRIES = 150_000
+MOST_ENTRIES_FOR_RULINGS = 300_000  # more is allowed where rulings would be left undecided, but not minutes
 MOST_LIFTED = 2_000_000  # spots lifted at moments that are looked at for a program's rows; some tenths of a second
 
 

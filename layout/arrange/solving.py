@@ -18,7 +18,7 @@ import numpy as np
 from layout.arrange.broken import broken_by
 from layout.arrange.budget import LOOKS_TO_JUDGE, LOOKS_TO_NARROW, LOOKS_TO_PLAY, LOOKS_TO_WRITE, Budget
 from layout.arrange.by_time import Best, Stuck, best_by_time, narrow_by_time
-from layout.arrange.coupled import MOST_LIFTED, best_coupled, worth_of
+from layout.arrange.coupled import MOST_ENTRIES_FOR_RULINGS, MOST_LIFTED, best_coupled, worth_of
 from layout.arrange.fitting import fitted
 from layout.arrange.loads import lifted_count, piled_up
 from layout.arrange.parts import parts_of
@@ -340,9 +340,9 @@ class Solving:
         if spots is not None or not len(forced):
             return spots
         allowed = budget.for_rulings
-        if allowed.spent or not self._fits_a_program(forced):
+        if allowed.spent:
             raise _NotFoundOut(forced)
-        found = best_coupled(self.problem, forced, allowed)
+        found = best_coupled(self.problem, forced, allowed, most_entries=MOST_ENTRIES_FOR_RULINGS)
         if found.spots is not None:
             return fitted(self.problem, plucks, found.spots, allowed) or found.spots
         if found.bound is not None:
