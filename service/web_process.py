@@ -51,7 +51,9 @@ worker_class = "gthread"
 logger_class = OneLog
 control_socket_disable = True
 timeout = 120  # s; a worker that gives no sign of life for so long is replaced
-keepalive = 5  # s; longer than a proxy or a client waits between two requests of one task
+# A connection is closed after its answer: one kept open would count against those a process takes on, see
+# `service.commands.web.gunicorn_command`, and a new one costs little on a network where a proxy stands before us.
+keepalive = 0
 
 
 def on_starting(server: Any) -> None:
@@ -61,7 +63,10 @@ def on_starting(server: Any) -> None:
 
 
 def post_worker_init(worker: Any) -> None:
-    """Import the computation as soon as a worker serves, so that the first tune does not wait for it."""
+    """Tell the app when its process stops, and import the computation, so that the first tune does not wait for it."""
+    from service.api.stopping import tell_stopping  # noqa: PLC0415 -- the app is imported by now, and not before
+
+    tell_stopping(worker.wsgi, lambda: not worker.alive)
     warming = threading.Timer(WARM_AFTER_S, _warm)
     warming.daemon = True
     warming.start()

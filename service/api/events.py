@@ -15,6 +15,7 @@ from service.api.models.orders import EventsQuery
 from service.api.operations import orders
 from service.api.order_answers import event_told, events_told
 from service.api.request_models import read_arguments
+from service.api.stopping import stopping
 from service.media_types import JSON_MEDIA_TYPE
 from service.orders.finding import events_after, events_of, find_order
 from service.orders.views import EventView
@@ -69,13 +70,13 @@ def _answer(asked: Request, after: int, more: More) -> Response:
         return json_response(events_told(more(after), after))
     last = asked.headers.get("Last-Event-ID", "")
     begin = int(last) if last.isascii() and last.isdigit() and len(last) <= MOST_DIGITS else after
-    response = Response(_stream(begin, more), content_type=f"{STREAM}; charset=utf-8")
+    response = Response(_stream(begin, more, stopping()), content_type=f"{STREAM}; charset=utf-8")
     response.headers["Cache-Control"] = "no-store"
     response.headers["X-Accel-Buffering"] = "no"  # a proxy that buffers would hold events back
     return response
 
 
-def _stream(after: int, more: More) -> Iterator[bytes]:
+def _stream(after: int, more: More, is_stopping: Callable[[], bool]) -> Iterator[bytes]:
     """Events as they come, each under its number, so that a client that connects anew goes on from there."""
     begun = breathed = time.monotonic()
     yield f"retry: {RETRY_MS}\n\n".encode()
@@ -85,7 +86,7 @@ def _stream(after: int, more: More) -> Iterator[bytes]:
             after = event.seq
             yield f"id: {event.seq}\nevent: {event.type}\ndata: {json.dumps(event_told(event))}\n\n".encode()
         now = time.monotonic()
-        if now - begun >= STREAMS_FOR_S:
+        if now - begun >= STREAMS_FOR_S or is_stopping():
             return
         if events:
             breathed = now

@@ -21,6 +21,7 @@ from service.api.order_forms import asked_order, brought_by, order_body, refused
 from service.api.preferring import wait_asked
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
+from service.api.stopping import stopping
 from service.orders.asked import AskedRepeat
 from service.orders.erasing import erase_order
 from service.orders.finding import Sought, find_order, list_orders
@@ -149,13 +150,13 @@ class _OrderDesk:
             The order, and how long a wait was granted; None where none was asked for.
         """
         wait_s = wait_asked(asked, most_s=MOST_WAIT_S)
-        until = time.monotonic() + (wait_s or 0)
+        until, is_stopping = time.monotonic() + (wait_s or 0), stopping()
         while True:
             with self._parts.store.reading() as session:
                 order = find_order(session, asker, order_id)
             seen = asked.if_none_match.contains(order_tag(order))
             is_worth_waiting = seen or (not asked.if_none_match and order.state in UNDECIDED)
-            if not is_worth_waiting or time.monotonic() >= until:
+            if not is_worth_waiting or time.monotonic() >= until or is_stopping():
                 return order, wait_s
             time.sleep(LOOKS_EVERY_S)
 

@@ -286,9 +286,14 @@ def test_sigterm_answers_what_is_asked_finishes_what_is_planned_and_leaves_no_pr
         service.planned(order_id)
         seen = service.ask("GET", f"/v1/orders/{order_id}")
         waited: list[Told] = []
-        tag = {"If-None-Match": str(seen.headers["ETag"]), "Prefer": "wait=4"}
+        tag = {"If-None-Match": str(seen.headers["ETag"]), "Prefer": "wait=30"}
         waiting = threading.Thread(target=lambda: waited.append(service.ask("GET", f"/v1/orders/{order_id}", **tag)))
         waiting.start()
+        stream = http.client.HTTPConnection("127.0.0.1", service.port, timeout=60)
+        stream.request(
+            "GET", "/v1/events", headers={"Authorization": f"Bearer {service.key}", "Accept": "text/event-stream"}
+        )
+        events = stream.getresponse()
         time.sleep(1)
         processes = all_below(service.process.pid)
         assert len(processes) >= 4  # the web, its two processes, the worker
@@ -298,6 +303,8 @@ def test_sigterm_answers_what_is_asked_finishes_what_is_planned_and_leaves_no_pr
 
         assert took_s < STOP_WITHIN_S + BUSY_S
         assert [told.status for told in waited] == [304]
+        assert events.read().endswith(b"\n\n")  # the stream ended between two events, not in one
+        stream.close()
         assert [pid for pid in processes if is_alive(pid)] == []
 
 
