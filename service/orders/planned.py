@@ -56,7 +56,7 @@ class PlannedOrder:
         good_to_cut: Whether no error-level finding stands on any disc.
         lost_share: Weight lost of the weight asked for over all discs, 0 to 1; 1 where nothing was asked.
         told: What an answer tells: `title`, and `discs`, each with its findings counted, worth, time and price.
-        files: Of all discs, in the order of discs and then of `layout.walk.FILES`.
+        files: Of all discs, in the order of discs and then of `layout.file_names.FILES`.
     """
 
     engine_version: str
