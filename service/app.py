@@ -34,6 +34,7 @@ from service.api.request_ids import name_requests
 from service.api.runs import run_routes
 from service.api.sheets import sheet_routes
 from service.api.sign_in import sign_in_routes
+from service.api.test_tunes import test_tune_routes
 from service.api.trial_pieces import trial_piece_routes
 from service.background.queue import Queue
 from service.logs import is_logging, start_logging
@@ -88,6 +89,7 @@ def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]
     yield sheet_routes(settings.limits)
     yield catalogue_routes(parts)
     yield about_routes(settings.limits)
+    yield test_tune_routes(settings.limits)
     yield problem_pages()
 
 

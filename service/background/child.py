@@ -31,6 +31,7 @@ from service.background.messages import (
     setup_from_json,
 )
 from service.background.stage_watch import StageWatch, TimedKeeper, TimedPlanner
+from service.background.test_deeds import act_out
 from service.orders.planned import OrderInputs
 from service.orders.planning import plan_order
 from service.planner import AnyPlanner
@@ -102,6 +103,9 @@ def _within_memory(request: PlanRequest, setup: ChildSetup, planner: AnyPlanner,
 
 
 def _planned(request: PlanRequest, planner: AnyPlanner, keeper: FileKeeper) -> ChildAnswer:
+    refusal = act_out(request)
+    if refusal is not None:
+        return ChildAnswer(kind=Kind.REFUSED, reason=refusal, resident_mib=_resident_mib())
     watch = StageWatch()
     try:
         with watch.timing("reading"):

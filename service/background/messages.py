@@ -47,6 +47,7 @@ class PlanRequest:
         cutter: Of the cutter document.
         settings: Of the settings document.
         not_good: The reason for cutting files despite findings; None: kept back.
+        is_test: Whether it is a test key's: some tunes are then more than they are, see `service.orders.test_tunes`.
     """
 
     order_id: str
@@ -55,6 +56,7 @@ class PlanRequest:
     cutter: str
     settings: str
     not_good: str | None
+    is_test: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -211,6 +211,7 @@ def _request_of(taken: Taken) -> PlanRequest:
         cutter=taken.cutter_digest,
         settings=taken.settings_digest,
         not_good=taken.not_good,
+        is_test=taken.is_test,
     )
 
 

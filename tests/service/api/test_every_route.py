@@ -86,6 +86,8 @@ TABLE: dict[str, Access] = {
     "POST /v1/proofs/<text>/verdict": COUNTED,
     "POST /v1/quotes": ORDER,
     "GET /v1/quotes/<quote_id>": READ,
+    "GET /v1/test-tunes": OPEN,
+    "GET /v1/test-tunes/<name>.mid": OPEN,
     "GET /v1/runs": READ,
     "POST /v1/runs": ORDER,
     "GET /v1/runs/<run_id>": READ,
