@@ -43,7 +43,10 @@ def served(files: FileStore, file: Served, asked: Request) -> Response:
     """
     span = _span(file, asked)
     start, end = span or (0, file.byte_count)
-    response = Response(files.chunks(file.digest, start=start, end=end), content_type=file.media_type)
+    is_known = asked.if_none_match.contains(file.digest)
+    is_wanted = asked.method != "HEAD" and not is_known  # else the file is not even opened
+    pieces = files.chunks(file.digest, start=start, end=end) if is_wanted else ()
+    response = Response(pieces, content_type=file.media_type)
     response.content_length = end - start
     response.set_etag(file.digest)
     digest = f"sha-256=:{base64.b64encode(bytes.fromhex(file.digest)).decode()}:"
@@ -56,9 +59,8 @@ def served(files: FileStore, file: Served, asked: Request) -> Response:
     else:
         response.status_code = 206
         response.headers["Content-Range"] = f"bytes {start}-{end - 1}/{file.byte_count}"
-    if asked.if_none_match.contains(file.digest):
+    if is_known:
         response.status_code = 304
-        response.response = ()
         for name in ("Content-Length", "Content-Range", "Content-Digest", "Content-Type"):
             response.headers.pop(name, None)
     return response

@@ -1,6 +1,7 @@
 """Orders over HTTP: placed once, seen by their owner alone, decided about, their files given."""
 
 import base64
+import errno
 import hashlib
 import json
 import re
@@ -19,6 +20,7 @@ from service.app import OPENED, create_app
 from service.orders.states import State
 from service.parts import Parts
 from service.settings import AccessSettings
+from service.store.holds import FileKeeper
 from tests.service.api.guarded import bearing, new_key, problem_of
 from tests.service.fakes import MANY
 from tests.service.shop import TUNE, planned
@@ -139,6 +141,46 @@ def test_of_many_at_the_same_moment_one_order_is_placed(shop: Shop) -> None:
     assert kinds <= {202, 409}
     assert len({answer.json["id"] for answer in answers if answer.status_code == 202}) == 1  # type: ignore[index]
     assert all("Retry-After" in answer.headers for answer in answers if answer.status_code == 409)
+    assert len(shop.http.get("/v1/orders", headers=shop.web).json["orders"]) == 1  # type: ignore[index]
+
+
+def test_a_request_whose_key_is_just_being_answered_is_told_to_wait(shop: Shop) -> None:
+    key = '"slow"'
+    answering, going_on = threading.Event(), threading.Event()
+    keep = FileKeeper.keep
+
+    def slowly(keeper: FileKeeper, contents: Any) -> Any:
+        answering.set()
+        going_on.wait(20)
+        return keep(keeper, contents)
+
+    with pytest.MonkeyPatch.context() as patched:
+        patched.setattr(FileKeeper, "keep", slowly)
+        first: list[TestResponse] = []
+        thread = threading.Thread(target=lambda: first.append(shop.place(key=key)))
+        thread.start()
+        assert answering.wait(20)
+        told = shop.place(key=key)
+        going_on.set()
+        thread.join()
+
+    problem_of(told, "still-running")
+    assert (told.headers["Retry-After"], told.json["try_again"]) == ("1", True)  # type: ignore[index]
+    assert first[0].get_data() == shop.place(key=key).get_data()
+
+
+def test_where_there_is_no_room_nothing_is_ordered_and_the_same_request_works_later(shop: Shop) -> None:
+    def fails(_handle: int) -> None:
+        raise OSError(errno.ENOSPC, "no room")
+
+    with pytest.MonkeyPatch.context() as patched:
+        patched.setattr("os.fsync", fails)
+        refused = shop.place(key='"full"')
+    later = shop.place(key='"full"')
+
+    problem_of(refused, "store-full")
+    assert int(refused.headers["Retry-After"]) > 0
+    assert later.status_code == 202
     assert len(shop.http.get("/v1/orders", headers=shop.web).json["orders"]) == 1  # type: ignore[index]
 
 

@@ -17,6 +17,7 @@ from service.api.failures import answer_failures
 from service.api.readiness import TOLD_AGAIN_S, WITHIN_S, readiness_routes
 from service.parts import Parts
 from service.store.store import Store
+from tests.service.api.guarded import problem_of
 
 AWAY = "postgresql://nobody@127.0.0.1:1/none"  # port 1 is for TCPMUX (RFC 1078), which nobody runs
 # Seconds that a busy machine may take to answer beyond the wait itself.
@@ -61,7 +62,7 @@ def test_a_database_that_is_away_is_named(parts: Parts, caplog: pytest.LogCaptur
         answer = client_of(away).get("/readyz")
 
     assert answer.status_code == 503
-    assert answer.json["type"] == "/problems/not-ready"
+    problem_of(answer, "not-ready")
     assert answer.json["away"] == ["database"]
     assert answer.headers["Retry-After"] == "5"
     assert "database: the database does not answer" in caplog.text

@@ -39,7 +39,7 @@ def test_without_a_wish_the_answer_is_what_to_measure(client: Client) -> None:
 
     assert (response.status_code, response.content_type) == (200, "application/json")
     assert response.get_json() == json.loads(FILES["trial-piece.json"])
-    assert response.headers["Vary"] == "Accept"
+    assert "Accept" in response.headers["Vary"]
 
 
 @pytest.mark.parametrize(
