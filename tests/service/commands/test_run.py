@@ -128,6 +128,21 @@ def test_a_folder_that_is_not_whole_is_made_again(
     }
 
 
+@pytest.mark.parametrize("name", ["layout.json", "making.json"])
+def test_a_folder_whose_files_are_of_two_tunes_is_made_again(
+    run: Run, counting: CountingWalk, tunes: Path, tmp_path: Path, name: str
+) -> None:
+    out = tmp_path / "discs"
+    run(tunes, *MOVEMENT, "--out", out)
+    other = out / "slow" / "waltz" / "fernhollow-31" / name
+    (out / "polka" / "fernhollow-31" / name).write_bytes(other.read_bytes())  # as a kill in the middle may leave it
+    counting.laid_out.clear()
+
+    run(tunes, *MOVEMENT, "--out", out)
+
+    assert counting.laid_out == [named(0)]
+
+
 def test_other_settings_make_everything_anew(run: Run, counting: CountingWalk, tunes: Path, tmp_path: Path) -> None:
     out, settings = tmp_path / "discs", tmp_path / "settings.json"
     settings.write_text('{"title": "Another"}')
