@@ -25,10 +25,12 @@ from layout.documents.movement import DiscBlank
 from service.api.problems import PROBLEMS
 from service.demo.compose import demo_tune
 from service.limits import Limits
+from service.settings import every_variable
 
 TOP = Path(__file__).parent.parent
 README = (TOP / "README.md").read_text()
-BLOCKS = re.findall(r"```sh\n(.*?)```", README, flags=re.DOTALL)
+[PIPELINE] = re.findall(r"```sh\n(# the pipeline.*?)```", README, flags=re.DOTALL)
+BLOCKS = [block for block in re.findall(r"```sh\n(.*?)```", README, flags=re.DOTALL) if block != PIPELINE]
 CURL = [command for block in BLOCKS for command in re.findall(r"^curl .*?[^\\]$", block, re.DOTALL | re.MULTILINE)]
 COMMANDS = [line for block in BLOCKS for line in block.splitlines() if line.startswith(("discwright ", "printf "))]
 
@@ -44,7 +46,13 @@ ARCHIVES = {
 
 
 @pytest.fixture(scope="module")
-def address(tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
+def data(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The folder of the running service's data."""
+    return tmp_path_factory.mktemp("data")
+
+
+@pytest.fixture(scope="module")
+def address(tmp_path_factory: pytest.TempPathFactory, data: Path) -> Iterator[str]:
     """A running service, as `discwright serve` starts it, on a free port."""
     with socket.socket() as probe:
         probe.bind(("127.0.0.1", 0))
@@ -53,7 +61,11 @@ def address(tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
     command = [sys.executable, "-m", "service.commands.main", "serve", "--port", str(port)]
     with (cache / "log").open("w") as log:
         process = subprocess.Popen(
-            command, cwd=TOP, env={"DISCWRIGHT_CACHE": str(cache), "PATH": ""}, stdout=log, stderr=log
+            command,
+            cwd=TOP,
+            env={"DISCWRIGHT_CACHE": str(cache), "DISCWRIGHT_DATA": str(data), "PATH": ""},
+            stdout=log,
+            stderr=log,
         )
         try:
             for _ in range(300):
@@ -111,6 +123,45 @@ def test_a_curl_line_of_the_readme_works(command: str, address: str, tmp_path: P
         )
 
 
+@pytest.mark.skipif(shutil.which("curl") is None, reason="the README's examples need curl")
+def test_the_pipeline_of_the_readme_goes_from_quote_to_files(address: str, data: Path, tmp_path: Path) -> None:
+    program = tmp_path / "bin" / "discwright"
+    program.parent.mkdir()
+    program.write_text(f"#!/bin/sh\nPYTHONPATH='{TOP}' exec {sys.executable} -m service.commands.main \"$@\"\n")
+    program.chmod(0o755)
+    where = f"PATH='{program.parent}':$PATH; export PATH; DISCWRIGHT_DATA='{data}'; export DISCWRIGHT_DATA; set -e\n"
+
+    result = run(where + PIPELINE.replace("http://127.0.0.1:8000", address) + "\necho $web", tmp_path)
+
+    assert (result.returncode, result.stderr) == (0, "")
+    made = tmp_path / "demo"
+    planned, released = (json.loads((made / f"{name}.json").read_text()) for name in ("planned", "released"))
+    events = json.loads((made / "events.json").read_text())["events"]
+    assert (planned["state"], released["state"], released["reference"]) == ("ready", "released", "W-1001")
+    assert [event["type"] for event in events] == [
+        f"order.{what}" for what in ("received", "planned", "ready", "released")
+    ]
+    assert len(ezdxf.readfile(made / "W-1001.dxf").modelspace().query("LWPOLYLINE[layer=='SLITS']")) > 300
+    assert "<svg" in (made / "preview.svg").read_text()
+    _order_by_the_client(address, result.stdout.strip(), tmp_path)
+
+
+def _order_by_the_client(address: str, key: str, folder: Path) -> None:
+    """The README's lines of Python, against the running service."""
+    [lines] = re.findall(r"```python\n(.*?)```", README, flags=re.DOTALL)
+    shutil.copy(TOP / "service/demo/tune.mid", folder / "dance.mid")
+    program = lines.replace("http://127.0.0.1:8000", address).replace("dw_…", key) + "print(order['state'])\n"
+    told = subprocess.run(
+        [sys.executable, "-c", program],
+        cwd=folder,
+        env={"PYTHONPATH": str(TOP), "PATH": ""},
+        capture_output=True,
+        text=True,
+        check=False,
+    )
+    assert (told.returncode, told.stdout) == (0, "ready\n"), told.stderr
+
+
 def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> None:
     program = f"{sys.executable} -m service.commands.main"
 
@@ -133,13 +184,19 @@ def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> 
 
 def test_the_readme_has_examples_to_run() -> None:
     assert len(CURL) == 11
-    assert len(COMMANDS) == 15
+    assert len(COMMANDS) == 17
 
 
 def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:
     rows = re.findall(r"^\| `(/problems/[a-z-]+)` \| (\d+) \|", README, flags=re.MULTILINE)
 
     assert dict(rows) == {kind.type: str(kind.status) for kind in PROBLEMS.values()}
+
+
+def test_every_setting_stands_in_the_readme_with_its_default() -> None:
+    rows = re.findall(r"^\| `([A-Z_]+)` \| (.+?) \| (.+?) \|$", README, flags=re.MULTILINE)
+
+    assert rows == [(told.name, told.meaning, told.default) for told in every_variable()]
 
 
 def test_every_file_stands_in_the_readme() -> None:
