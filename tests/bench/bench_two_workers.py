@@ -1,6 +1,6 @@
 """How much sooner two worker processes plan a run of 300 on PostgreSQL than one does, and what a core plans an hour.
 
-Each order is laid out for real: the demo tune's first seconds, each under a title of its own, so that none is made twice.
+Each order is laid out for real: the demo tune's first seconds, each under a title of its own, so that none is the same.
 """
 
 import json
