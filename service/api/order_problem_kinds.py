@@ -54,6 +54,13 @@ KINDS = (
         what_to_do="State the rates that detail names in the cutter document.",
     ),
     ProblemKind(
+        name="archive-unreadable",
+        status=422,
+        title="The archive of tunes cannot be taken",
+        what_to_do="Make a plain ZIP archive of MIDI files, without a password, within the limits that "
+        "`GET /v1/limits` tells; detail says what is wrong with this one.",
+    ),
+    ProblemKind(
         name="key-reused",
         status=422,
         title="The Idempotency-Key was used for another request",

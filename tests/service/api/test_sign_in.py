@@ -106,7 +106,7 @@ def test_each_sign_in_has_a_secret_of_its_own(parts: Parts, http: FlaskClient) -
     assert len(tokens) == 3
 
 
-@pytest.mark.parametrize("key", ["", "nonsense", new_key_secret()])
+@pytest.mark.parametrize("key", ["", "nonsense", new_key_secret()], ids=["empty", "nonsense", "never made"])
 def test_a_key_not_in_force_signs_nobody_in(http: FlaskClient, key: str) -> None:
     answer = http.post("/sign-in", data={"key": key})
 
