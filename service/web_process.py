@@ -20,6 +20,7 @@ from service.settings import settings_from
 
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
 COMPUTATION = ("layout.walk", "layout.sheet_walk", "layout.trial_walk")
+WAITING_SHARE = 0.5  # of the threads, for requests that wait and streams of events; the rest is for all others
 WARM_AFTER_S = 0.5  # s; first the requests that waited for the start
 
 
@@ -63,10 +64,12 @@ def on_starting(server: Any) -> None:
 
 
 def post_worker_init(worker: Any) -> None:
-    """Tell the app when its process stops, and import the computation, so that the first tune does not wait for it."""
+    """Tell the app when its process stops and how many may wait, and import the computation before the first tune."""
     from service.api.stopping import tell_stopping  # noqa: PLC0415 -- the app is imported by now, and not before
+    from service.api.waiting_room import open_waiting_room  # noqa: PLC0415 -- as above
 
     tell_stopping(worker.wsgi, lambda: not worker.alive)
+    open_waiting_room(worker.wsgi, int(worker.cfg.threads * WAITING_SHARE))
     warming = threading.Timer(WARM_AFTER_S, _warm)
     warming.daemon = True
     warming.start()

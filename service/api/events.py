@@ -16,6 +16,7 @@ from service.api.operations import orders
 from service.api.order_answers import event_told, events_told
 from service.api.request_models import read_arguments
 from service.api.stopping import stopping
+from service.api.waiting_room import waiting_room
 from service.media_types import JSON_MEDIA_TYPE
 from service.orders.finding import events_after, events_of, find_order
 from service.orders.views import EventView
@@ -70,7 +71,12 @@ def _answer(asked: Request, after: int, more: More) -> Response:
         return json_response(events_told(more(after), after))
     last = asked.headers.get("Last-Event-ID", "")
     begin = int(last) if last.isascii() and last.isdigit() and len(last) <= MOST_DIGITS else after
-    response = Response(_stream(begin, more, stopping()), content_type=f"{STREAM}; charset=utf-8")
+    room, is_over = waiting_room(), stopping()
+    if room.enter():
+        response = Response(_stream(begin, more, is_over), content_type=f"{STREAM}; charset=utf-8")
+        response.call_on_close(room.leave)
+    else:  # what there is; the client comes again after RETRY_MS
+        response = Response(_stream(begin, more, lambda: True), content_type=f"{STREAM}; charset=utf-8")
     response.headers["Cache-Control"] = "no-store"
     response.headers["X-Accel-Buffering"] = "no"  # a proxy that buffers would hold events back
     return response

@@ -22,6 +22,7 @@ from service.api.preferring import wait_asked
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
 from service.api.stopping import stopping
+from service.api.waiting_room import waiting_room
 from service.orders.asked import AskedRepeat
 from service.orders.erasing import erase_order
 from service.orders.finding import Sought, find_order, list_orders
@@ -147,18 +148,33 @@ class _OrderDesk:
         """An order, after a wait where the request prefers one: till it is planned, or changed from what was seen.
 
         Returns:
-            The order, and how long a wait was granted; None where none was asked for.
+            The order, and how long a wait was granted; None where none was asked for, or too many wait already.
         """
         wait_s = wait_asked(asked, most_s=MOST_WAIT_S)
-        until, is_stopping = time.monotonic() + (wait_s or 0), stopping()
-        while True:
-            with self._parts.store.reading() as session:
-                order = find_order(session, asker, order_id)
-            seen = asked.if_none_match.contains(order_tag(order))
-            is_worth_waiting = seen or (not asked.if_none_match and order.state in UNDECIDED)
-            if not is_worth_waiting or time.monotonic() >= until or is_stopping():
-                return order, wait_s
-            time.sleep(LOOKS_EVERY_S)
+        until, is_stopping, room = time.monotonic() + (wait_s or 0), stopping(), waiting_room()
+        order = self._looked_for(asker, order_id)
+        if time.monotonic() >= until or not _is_worth_waiting(order, asked):
+            return order, wait_s
+        if not room.enter():
+            return order, None
+        try:
+            while _is_worth_waiting(order, asked) and time.monotonic() < until and not is_stopping():
+                time.sleep(LOOKS_EVERY_S)
+                order = self._looked_for(asker, order_id)
+        finally:
+            room.leave()
+        return order, wait_s
+
+    def _looked_for(self, asker: Asker, order_id: str) -> OrderView:
+        with self._parts.store.reading() as session:
+            return find_order(session, asker, order_id)
+
+
+def _is_worth_waiting(order: OrderView, asked: Request) -> bool:
+    """Whether the asker knows the order as it is, or knows nothing and it is not planned yet."""
+    if asked.if_none_match:
+        return asked.if_none_match.contains(order_tag(order))
+    return order.state in UNDECIDED
 
 
 def _repeat_of(body: OrderBody, brought: Mapping[str, bytes]) -> AskedRepeat:

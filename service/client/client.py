@@ -11,6 +11,7 @@ from service.client.operations import Operations
 
 NOT_MODIFIED = 304
 WAITS_S = 20  # s; of one request, below what proxies bear
+LOOKS_EVERY_S = 1.0  # s; between looks where the service grants no wait
 EVENTS_AT_A_TIME = 500
 
 
@@ -72,6 +73,8 @@ class Client(Operations):
             if time.monotonic() >= until_s:
                 state = "unknown" if order is None else order["state"]
                 raise WaitedTooLongError(f"the order {order_id} is {state} after {within_s:g} s")
+            if "preference-applied" not in answer.headers:  # too many wait at the service: it answers at once
+                time.sleep(min(LOOKS_EVERY_S, max(0.0, until_s - time.monotonic())))
 
     def events(self, after: int = 0) -> Iterator[shapes.EventAnswer]:
         """Every event past a number, the oldest first, up to the newest there is."""
