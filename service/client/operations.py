@@ -351,6 +351,16 @@ class Operations:
         path = "/v1/sheets"
         return self._caller.send("POST", path, body=body)
 
+    def list_test_tunes(self) -> shapes.StateTunesAnswer:
+        """Tunes that lead an order to each of its states."""
+        path = "/v1/test-tunes"
+        return cast("shapes.StateTunesAnswer", self._caller.json("GET", path))
+
+    def tell_test_tune(self, name: str) -> Answer:
+        """A test tune."""
+        path = place("/v1/test-tunes/{name}.mid", {"name": name})
+        return self._caller.send("GET", path)
+
     def make_trial_piece(
         self,
         parts: Mapping[str, bytes | Mapping[str, Any]] | None = None,

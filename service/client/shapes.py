@@ -586,6 +586,26 @@ class SecretBody(TypedDict):
 SheetPlanAnswer = dict[str, Any]
 
 
+State = str
+
+
+class StateTuneAnswer(TypedDict):
+    """A tune that leads an order of a test key to a state."""
+
+    name: str
+    leads_to: "State"
+    meaning: str
+    release_alone: bool
+    sha256: str
+    href: str
+
+
+class StateTunesAnswer(TypedDict):
+    """All test tunes."""
+
+    tunes: list["StateTuneAnswer"]
+
+
 TrialPieceAnswer = dict[str, Any]
 
 
