@@ -13,6 +13,7 @@ from functools import wraps
 from typing import Any, TypeVar
 
 from flask import Flask, Request, Response, current_app, g, request
+from werkzeug.exceptions import NotFound
 
 from service.access.asker import Asker
 from service.access.browsers import Browser, find_browser
@@ -26,6 +27,7 @@ from service.parts import Parts
 
 log = logging.getLogger("discwright")
 
+NUL = "\0"
 CHALLENGE = 'Bearer realm="discwright"'  # RFC 6750 section 3
 View = TypeVar("View", bound=Callable[..., Any])
 
@@ -125,6 +127,8 @@ def guard(app: Flask, parts: Parts, rates: Rates, clock: Callable[[], datetime] 
 
     @app.before_request
     def let_in() -> None:
+        if NUL in request.path:  # there is no such id, and PostgreSQL takes no such text
+            raise NotFound
         if request.endpoint is not None:  # else there is no such route, which is told to all
             gate.let_in(request, access_of(app.view_functions[request.endpoint]))
 

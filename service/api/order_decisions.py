@@ -82,6 +82,8 @@ def decision_routes(parts: Parts, send: Send, links: ProofLinks) -> Blueprint:
             )
         text = links.make(Proof(order_id=order.id, revision=order.plan_revision))
         address = url_for("proofs.show", text=text)
+        if not (parts.settings.places.public_url or request.host):
+            raise ProblemError(name="request-malformed", detail="the header Host names no host to link to")
         base = parts.settings.places.public_url or request.host_url
         return json_response({"href": base.rstrip("/") + address, "revision": order.plan_revision}, status=201)
 

@@ -7,7 +7,7 @@ from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES
 from service.api.asking import needs
 from service.api.describing import describes
-from service.api.models.orders import FileQuery
+from service.api.models.orders import MOST_REVISION, FileQuery
 from service.api.operations import orders
 from service.api.order_answers import order_address
 from service.api.problems import ProblemError
@@ -29,7 +29,7 @@ def order_file_routes(parts: Parts) -> Blueprint:
         asked = read_arguments(request, FileQuery)
         with parts.store.reading() as session:
             order = find_order(session, asker, order_id)
-            plan = plan_view(session, order.id, revision)
+            plan = plan_view(session, order.id, revision) if revision <= MOST_REVISION else None
         file = file_of(plan, disc, name)
         _check_given(plan, file, asked)
         response = file_response(parts, file, request)

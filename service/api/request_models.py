@@ -1,6 +1,7 @@
 """From what a request says to a checked model, every fault told with its place."""
 
-from typing import TypeVar
+from collections.abc import Iterator
+from typing import Any, TypeVar
 
 from flask import Request
 from pydantic import ValidationError
@@ -14,6 +15,8 @@ from service.media_types import JSON_MEDIA_TYPE
 
 ModelT = TypeVar("ModelT", bound=Part)
 PLAIN = "a plain value is needed, got an object"
+NUL = "\0"  # no name of ours holds one, and no text of PostgreSQL (its manual, section 8.3)
+HOLDS_NUL = "it holds the character NUL (U+0000), which nothing here does; leave it out"
 
 
 def read_body(asked: Request, model: type[ModelT], *, document: str, most_bytes: int) -> ModelT:
@@ -62,6 +65,9 @@ def read_text(asked: Request, model: type[ModelT], text: bytes, *, document: str
     if stated:
         faults = tuple(Problem(pointer=place, message=plain) for place in stated)
         raise DocumentError(document=document, problems=faults)
+    faults = tuple(Problem(pointer=place, message=HOLDS_NUL) for place in _places_of_nul(value, ""))
+    if faults:
+        raise DocumentError(document=document, problems=faults)
     return check_document(model, value, document=document)
 
 
@@ -80,12 +86,30 @@ def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
             raise _invalid(name, f"there is no parameter called {name[:100]!r} here; {known}")
         if len(values) > 1:
             raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
+        if NUL in values[0]:
+            raise _invalid(name, f"{name} is {values[0][:100]!r}: {HOLDS_NUL}")
     try:
         return model.model_validate(asked.args.to_dict())
     except ValidationError as error:
         fault = error.errors(include_url=False)[0]
         name, seen = str(fault["loc"][0]), str(fault["input"])[:100]
         raise _invalid(name, f"{name} is {seen!r}: {fault['msg'].removeprefix('Value error, ')}") from error
+
+
+def _places_of_nul(value: Any, place: str) -> Iterator[str]:
+    """JSON pointers of the texts that hold NUL, and of the objects with such a name in them."""
+    if isinstance(value, str):
+        if NUL in value:
+            yield place
+    elif isinstance(value, list):
+        for number, member in enumerate(value):
+            yield from _places_of_nul(member, f"{place}/{number}")
+    elif isinstance(value, dict):
+        for name, member in value.items():
+            if NUL in name:
+                yield place
+            else:
+                yield from _places_of_nul(member, f"{place}/{name.replace('~', '~0').replace('/', '~1')}")
 
 
 def _invalid(name: str, detail: str) -> ProblemError:

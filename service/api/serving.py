@@ -76,6 +76,9 @@ def _span(file: Served, asked: Request) -> tuple[int, int] | None:
     wanted = parse_range_header(text)
     if wanted is None or wanted.units != "bytes" or len(wanted.ranges) != 1:
         return None  # a range that is not understood is as if it were not there (RFC 9110 section 14.2)
+    begin, _ = wanted.ranges[0]
+    if begin is not None and -begin > file.byte_count > 0:
+        return 0, file.byte_count  # more of its end than there is: all of it (RFC 9110 section 14.1.2)
     span = wanted.range_for_length(file.byte_count)
     if span is None:
         raise ProblemError(

@@ -12,6 +12,8 @@ from service.orders.states import State
 MOST_PAGE = 200  # orders of one page: about 600 kB of JSON
 MOST_WAIT_S = 30  # s; proxies give up after 60
 ORDER_ID = r"^order_[0-9a-f]{32}$"
+MOST_REVISION = 2_147_483_647  # what the column holds
+MOST_SEQ = 9_223_372_036_854_775_807  # so
 
 RFC_3339 = re.compile(r"\d{4}-\d\d-\d\d[Tt ]\d\d:\d\d:\d\d(\.\d+)?([Zz]|[+-]\d\d:\d\d)?")  # the zone is asked for below
 
@@ -31,7 +33,10 @@ def _rfc_3339(text: object) -> object:
 def _with_zone(moment: datetime) -> datetime:
     if moment.tzinfo is None:
         raise ValueError("it must name its time zone, such as 2026-12-02T10:00:00Z")
-    return moment.astimezone(UTC)
+    try:
+        return moment.astimezone(UTC)
+    except OverflowError as fault:
+        raise ValueError("it must be a moment of the years 1 to 9999, also in UTC") from fault
 
 
 # A schema can forbid control characters; that others cannot be printed either is checked, and told in the detail.
@@ -47,7 +52,9 @@ class DocumentName(Part):
     """A movement or cutter that is kept, by its id."""
 
     id: Annotated[str, Field(min_length=1, max_length=64)]
-    revision: Annotated[int, Field(ge=1)] | None = Field(default=None, description="which revision; the newest if null")
+    revision: Annotated[int, Field(ge=1, le=MOST_REVISION)] | None = Field(
+        default=None, description="which revision; the newest if null"
+    )
 
 
 class OrderBody(Part):
@@ -94,7 +101,7 @@ class OrdersQuery(Part):
 class EventsQuery(Part):
     """Which events are listed."""
 
-    after: Annotated[int, Field(ge=0)] = Field(default=0, description="events past this number alone")
+    after: Annotated[int, Field(ge=0, le=MOST_SEQ)] = Field(default=0, description="events past this number alone")
     limit: Annotated[int, Field(ge=1, le=1000)] = Field(default=200, description="how many events at most")
     test: bool = Field(default=False, description="events of orders for tests, in place of the others")
 
@@ -119,7 +126,7 @@ class ReleaseBody(Part):
 class ReplanBody(Part):
     """What is asked for anew; what is left out stays as it was."""
 
-    movement_revision: Annotated[int, Field(ge=1)] | None = Field(
+    movement_revision: Annotated[int, Field(ge=1, le=MOST_REVISION)] | None = Field(
         default=None, description="a revision of the order's movement"
     )
     settings: dict[str, Any] | None = Field(default=None, description="a settings document in place of the old one")

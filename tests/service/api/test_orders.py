@@ -6,6 +6,7 @@ import hashlib
 import json
 import re
 import threading
+import time
 from collections.abc import Iterator
 from dataclasses import replace
 from io import BytesIO
@@ -16,6 +17,7 @@ from flask.testing import FlaskClient
 from werkzeug.test import TestResponse
 
 from service.access.scopes import Scope
+from service.api.waiting_room import WAITING_ROOM, open_waiting_room
 from service.app import OPENED, create_app
 from service.orders.states import State
 from service.parts import Parts
@@ -434,6 +436,115 @@ def test_a_client_that_has_the_newest_is_told_so_after_its_wait(shop: Shop) -> N
     answer = shop.http.get(f"/v1/orders/{order_id}", headers={**shop.web, "If-None-Match": tag, "Prefer": "wait=1"})
 
     assert answer.status_code == 304
+
+
+@pytest.mark.parametrize("id_in_path", ["%00", "order_%00", "a%00b"])
+@pytest.mark.parametrize(
+    "place", ["orders/{}", "orders/{}/events", "orders/{}/plans/1/files/1/disc.svg", "runs/{}", "quotes/{}", "hooks/{}"]
+)
+def test_an_id_with_a_nul_leads_nowhere(shop: Shop, place: str, id_in_path: str) -> None:
+    answer = shop.http.get(f"/v1/{place.format(id_in_path)}", headers=shop.web)
+
+    problem_of(answer, "route-unknown")
+
+
+@pytest.mark.parametrize("revision", [2**31 - 1, 2**31, 2**63, 10**30])
+def test_a_file_of_a_plan_that_no_table_can_number_is_unknown(shop: Shop, revision: int) -> None:
+    order_id = shop.ready()
+
+    answer = shop.http.get(f"/v1/orders/{order_id}/plans/{revision}/files/1/disc.svg", headers=shop.web)
+
+    problem_of(answer, "route-unknown")
+
+
+@pytest.mark.parametrize(
+    ("asked", "parameter"),
+    [
+        (f"events?after={2**63}", "after"),
+        ("events?after=" + "9" * 30, "after"),
+        ("orders?run=%00", "run"),
+        ("movements?after=a%00", "after"),
+        ("orders?updated_since=0001-01-01T00:00:00%2B23:59", "updated_since"),
+        ("orders?updated_since=9999-12-31T23:59:59-23:59", "updated_since"),
+    ],
+)
+def test_a_question_that_no_table_can_be_asked_is_refused(shop: Shop, asked: str, parameter: str) -> None:
+    told = problem_of(shop.http.get(f"/v1/{asked}", headers=shop.web), "parameter-invalid")
+
+    assert told["parameter"] == parameter
+
+
+@pytest.mark.parametrize(
+    ("said", "pointer"),
+    [
+        ({"movement": {"id": "fernhollow-31", "revision": 2**31}}, "/movement"),
+        ({"movement": "a\0b"}, "/movement"),
+        ({**MINE, "cutter": "\0"}, "/cutter"),
+        ({**MINE, "quote": "quote_\0"}, "/quote"),
+        ({**MINE, "hook": "\0"}, "/hook"),
+        ({**MINE, "settings": {"title": "a\0b"}}, "/settings/title"),
+    ],
+)
+def test_an_order_that_names_what_no_table_can_hold_is_refused(shop: Shop, said: dict[str, Any], pointer: str) -> None:
+    told = problem_of(shop.place(said), "document-invalid")
+
+    assert told["invalid_params"][0]["pointer"].startswith(pointer)
+
+
+def test_more_of_a_files_end_than_there_is_gives_all_of_it(shop: Shop) -> None:
+    order_id = shop.ready()
+    place = f"/v1/orders/{order_id}/plans/1/files/1/disc.svg"
+    whole = shop.http.get(place, headers=shop.web).get_data()
+
+    answer = shop.http.get(place, headers={**shop.web, "Range": f"bytes=-{10 * len(whole)}"})
+
+    assert (answer.status_code, answer.get_data()) == (206, whole)
+    assert answer.headers["Content-Range"] == f"bytes 0-{len(whole) - 1}/{len(whole)}"
+
+
+@pytest.mark.parametrize("host", ["a b", "shop.example:99999", "shop.example/there"])
+def test_a_proof_link_leads_to_no_host_that_is_none(shop: Shop, host: str) -> None:
+    order_id = shop.ready()
+
+    answer = shop.http.post(f"/v1/orders/{order_id}/proof-links", headers={**shop.web, "Host": host})
+
+    told = problem_of(answer, "request-malformed")
+    assert "Host" in told["detail"]
+
+
+def test_where_no_more_may_wait_a_client_is_answered_at_once(shop: Shop) -> None:
+    order_id = shop.placed()
+    open_waiting_room(shop.http.application, 0)
+    begun_s = time.monotonic()
+
+    answer = shop.http.get(f"/v1/orders/{order_id}", headers={**shop.web, "Prefer": "wait=20"})
+
+    assert (answer.status_code, answer.json["state"]) == (200, "received")  # type: ignore[index]
+    assert "Preference-Applied" not in answer.headers
+    assert time.monotonic() - begun_s < 5
+
+
+def test_who_has_waited_leaves_the_place_to_the_next(shop: Shop) -> None:
+    order_id = shop.placed()
+    open_waiting_room(shop.http.application, 1)
+
+    answers = [shop.http.get(f"/v1/orders/{order_id}", headers={**shop.web, "Prefer": "wait=1"}) for _ in range(2)]
+
+    assert [answer.headers.get("Preference-Applied") for answer in answers] == ["wait=1", "wait=1"]
+
+
+def test_where_no_more_may_stream_a_stream_tells_what_there_is_and_ends(shop: Shop) -> None:
+    order_id = shop.ready()
+    open_waiting_room(shop.http.application, 1)
+    headers = {**shop.web, "Accept": "text/event-stream"}
+    first = shop.http.get(f"/v1/orders/{order_id}/events", headers=headers, buffered=False)
+
+    told = shop.http.get(f"/v1/orders/{order_id}/events", headers=headers).get_data(as_text=True)
+    first.close()
+
+    assert re.findall(r"^id: (.+)$", told, re.MULTILINE) == ["1", "2", "3"]
+    assert told.startswith("retry: 2000")
+    assert shop.http.application.extensions[WAITING_ROOM].enter()  # a stream that was cut has left its place
 
 
 def test_events_are_asked_for_after_the_last_that_was_seen(shop: Shop) -> None:
