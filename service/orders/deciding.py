@@ -110,13 +110,14 @@ def replan_order(store: Store, asker: Asker, seen: Seen, columns: Mapping[str, A
             raise StateForbidsError("the order's tune was deleted; order again with the tune")
         if state in (State.PLANNING, State.RECEIVED, State.CANCELLED):
             raise StateForbidsError(f"the order is {state}; it can be planned anew once it is planned, or order again")
+        cleared = {"reason": None, "despite_findings": None, "despite_by": None, "killed": 0}
+        # The order's row first, the counter of events after it, as everywhere: else two decisions lock each other.
+        _change(session, order, State.RECEIVED, now, {**cleared, **columns})
         if state is State.RELEASED:
             plan = _plan(session, order)
             plan.superseded_at = now
             data = {"revision": plan.revision}
             add_event(session, order, EventType.SUPERSEDED, at=now, by=asker.title, data=data)
-        cleared = {"reason": None, "despite_findings": None, "despite_by": None, "killed": 0}
-        _change(session, order, State.RECEIVED, now, {**cleared, **columns})
 
     return _decide(store, asker, seen, replanning, also)
 

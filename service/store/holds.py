@@ -97,8 +97,9 @@ def _sweep_one(store: Store, files: FileStore) -> str | None:
         found = select(StoredFile.digest).where(~is_held, is_old).order_by(StoredFile.created_at).limit(1)
         digest = session.scalars(found.with_for_update(skip_locked=True)).first()
         if digest is not None:
-            session.execute(delete(StoredFile).where(StoredFile.digest == digest, ~is_held))
-            # Inside the transaction, as the module says; if it ends here, a note without a file is left, which
-            # the next keeper or sweep mends.
-            files.remove(digest)
+            unheld = delete(StoredFile).where(StoredFile.digest == digest, ~is_held).returning(StoredFile.digest)
+            # Where it came to be held since it was found, it stays. It is removed inside the transaction, as the
+            # module says; if that ends here, a note without a file is left, which the next keeper or sweep mends.
+            if session.scalars(unheld).first() is not None:
+                files.remove(digest)
         return digest

@@ -1,15 +1,18 @@
 import contextlib
+import json
 from dataclasses import replace
 from itertools import pairwise
 
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
-from sqlalchemy import func, select
-from sqlalchemy.orm import Session
+from sqlalchemy import event, func, select
+from sqlalchemy.orm import ORMExecuteState, Session
 
 from layout.errors import DocumentError, MidiReadError
 from service.access.asker import Asker
+from service.hooks.deliveries import Holder
+from service.hooks.keeping import HookWish, add_hook
 from service.orders import taking
 from service.orders.asked import NamedDocument
 from service.orders.deciding import (
@@ -33,8 +36,8 @@ from service.orders.placing import nothing_more, place_order
 from service.orders.states import MAY_FOLLOW, State
 from service.orders.views import OrderView
 from service.parts import Parts
-from service.store.holds import sweep_files
-from service.store.tables import Event, FileHold, Order, Owner, StoredFile
+from service.store.holds import Hold, hold, sweep_files
+from service.store.tables import Delivery, Event, FileHold, Order, Owner, StoredFile
 from tests.service.shop import (
     ASKED,
     OTHER_SHOP,
@@ -419,3 +422,36 @@ def _step(parts: Parts, order_id: str, step: str, held: taking.Taken | None) -> 
             recalled = step == "recall"
             cancel_order(parts.store, SHOP, seen, reason="no", recalled=recalled, also=nothing_more)
     return held
+
+
+def test_the_message_that_a_plan_is_superseded_tells_the_order_as_it_is_then(shop: Parts) -> None:
+    order = placed(shop)
+    planned(shop, order.id)
+    release_order(shop.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more)
+    with shop.store.writing() as session:
+        wish = HookWish(url="https://shop.example/told", types=("order.superseded",), for_all_orders=True)
+        holder = Holder(owner_id=WEB_SHOP.owner_id, is_test=False)
+        add_hook(session, holder, wish, now=shop.store.now(session))
+
+    replan_order(shop.store, WEB_SHOP, Seen(order_id=order.id), {}, nothing_more)
+
+    with shop.store.reading() as session:
+        [body] = session.scalars(select(Delivery.body))
+    assert json.loads(body)["data"]["state"] == now_of(shop, order.id).state == "received"
+
+
+def test_a_file_that_comes_to_be_held_while_it_is_swept_stays(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("service.store.holds.SPARED_S", -1)
+    [digest] = keeper_of(shop).keep([b"a file that nobody holds yet"])
+
+    def hold_first(state: ORMExecuteState) -> None:
+        if state.is_delete:  # another's hold, between finding the file and letting it go
+            hold(state.session, Hold(digest=digest, owner_id="owner_web", holder_id="order_1", what="result"))
+
+    event.listen(Session, "do_orm_execute", hold_first)
+    try:
+        sweep_files(shop.store, shop.files, most=1)
+    finally:
+        event.remove(Session, "do_orm_execute", hold_first)
+
+    assert shop.files.has(digest)
