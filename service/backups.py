@@ -210,6 +210,7 @@ def _bring_back(copy: Path, target: Path, *, may_replace: bool) -> _Before:
         raise BackupError(f"{target} holds orders already; stop the service, then add --replace to overwrite them")
     with closing(sqlite3.connect(copy)) as source, closing(sqlite3.connect(target, timeout=1)) as into:
         try:
+            into.execute("PRAGMA journal_mode = DELETE")  # refused while another has it open, even one at rest
             source.backup(into)  # one transaction: after a failure the database is what it was
         except sqlite3.OperationalError as fault:
             raise BackupError(f"{target} is in use; stop the service first") from fault

@@ -11,7 +11,7 @@ from importlib.util import find_spec
 from pathlib import Path
 
 import pytest
-from sqlalchemy import select, update
+from sqlalchemy import select, text, update
 
 from service.backups import ABOUT_NAME, DATABASE_NAME, LEAP, BackupError, back_up, restore
 from service.commands.main import main
@@ -262,6 +262,20 @@ def test_a_database_that_holds_orders_is_not_overwritten_unasked(small: Shop) ->
         restore(small.settings, small.folder, may_replace=False)
 
     assert small.seen(order_id).erased_at is None
+
+
+def test_a_database_that_a_service_at_rest_has_open_is_not_overwritten(small: Shop) -> None:
+    order = placed(small.parts)
+    small.back_up()
+    other = open_parts(small.settings)  # a web process between two requests: it holds no lock, and goes on after
+    with other.store.reading() as session:
+        session.execute(text("SELECT 1"))
+
+    with pytest.raises(BackupError, match="is in use; stop the service first"):
+        small.restore()
+    other.store.close()
+
+    assert small.restore().seen(order.id) == order
 
 
 def test_a_damaged_file_of_a_backup_is_named_and_the_rest_comes_back(small: Shop, tmp_path: Path) -> None:
