@@ -78,6 +78,8 @@ def repeat_order(store: Store, asker: Asker, asked: AskedRepeat, also: Also) -> 
 def _released(session: Session, asker: Asker, order_id: str) -> tuple[Order, Plan]:
     first = order_row(session, asker, order_id)
     plan = session.get(Plan, (first.id, first.plan_revision))
+    if first.is_test and not asker.is_test:
+        raise StateForbidsError(f"the order {first.id} is for tests, and what is made for tests never reaches the shop")
     if first.state != State.RELEASED or plan is None or first.erased_at is not None:
         raise StateForbidsError(f"the order {first.id} is {first.state}; a released one alone can be repeated")
     of_plan = (PlanFile.order_id == first.id, PlanFile.revision == plan.revision)

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from datetime import datetime, timedelta
 from typing import Any
 
-from sqlalchemy import ColumnElement, delete, exists, select
+from sqlalchemy import ColumnElement, delete, exists, or_, select
 from sqlalchemy.orm import Session
 
 from service.hooks.deliveries import forget_deliveries
@@ -24,7 +24,7 @@ from service.settings import RetentionSettings
 from service.store.files import FileStore
 from service.store.holds import let_go, sweep_files
 from service.store.store import Store
-from service.store.tables import Order, PlanFile, RunItem
+from service.store.tables import FileHold, Order, PlanFile, RunItem
 
 log = logging.getLogger(__name__)
 
@@ -88,7 +88,7 @@ def forget_drawings(store: Store, *, days: int) -> int:
         let_go(session, holder_id=order.id)
         session.execute(delete(PlanFile).where(PlanFile.order_id == order.id))
 
-    has_files = exists().where(PlanFile.order_id == Order.id)
+    has_files = or_(exists().where(PlanFile.order_id == Order.id), exists().where(FileHold.holder_id == Order.id))
     return _forget(store, days, has_files, forget, {"tune_name": None, "tune_digest": ""})
 
 

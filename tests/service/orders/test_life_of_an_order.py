@@ -14,7 +14,7 @@ from service.access.asker import Asker
 from service.hooks.deliveries import Holder
 from service.hooks.keeping import HookWish, add_hook
 from service.orders import taking
-from service.orders.asked import NamedDocument
+from service.orders.asked import AskedRepeat, NamedDocument
 from service.orders.deciding import (
     Release,
     Seen,
@@ -33,6 +33,7 @@ from service.orders.faults import (
 )
 from service.orders.finding import Sought, events_after, events_of, find_order, list_orders
 from service.orders.placing import nothing_more, place_order
+from service.orders.repeating import repeat_order
 from service.orders.states import MAY_FOLLOW, State
 from service.orders.views import OrderView
 from service.parts import Parts
@@ -455,3 +456,15 @@ def test_a_file_that_comes_to_be_held_while_it_is_swept_stays(shop: Parts, monke
         event.remove(Session, "do_orm_execute", hold_first)
 
     assert shop.files.has(digest)
+
+
+def test_what_was_made_for_tests_is_repeated_for_tests_alone(shop: Parts) -> None:
+    first = placed(shop, asker=WEB_TESTS)
+    planned(shop, first.id)
+    release_order(shop.store, WEB_TESTS, Seen(order_id=first.id), Release(by="Ada"), nothing_more)
+
+    with pytest.raises(StateForbidsError, match="what is made for tests never reaches the shop"):
+        repeat_order(shop.store, WEB_SHOP, AskedRepeat(repeat_of=first.id), nothing_more)
+    again = repeat_order(shop.store, WEB_TESTS, AskedRepeat(repeat_of=first.id), nothing_more)
+
+    assert (again.state, again.is_test) == ("ready", True)

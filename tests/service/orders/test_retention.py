@@ -95,6 +95,19 @@ def test_the_drawings_go_after_their_time_with_the_documents(shop: Parts) -> Non
     assert (after.reference, after.plan.released_by) == ("W-1001", "Ada")  # the story stays till it is deleted
 
 
+@pytest.mark.parametrize("end", ["failed", "cancelled"])
+def test_the_documents_of_an_order_without_a_plan_go_after_their_time_too(shop: Parts, end: str) -> None:
+    order = placed(shop)
+    with shop.store.writing() as session:
+        then = shop.store.now(session) - timedelta(days=101)
+        session.execute(update(Order).where(Order.id == order.id).values(state=end, finished_at=then))
+
+    forgotten = keep_retention(shop.store, shop.files, TIMES)
+
+    assert (forgotten.tunes, forgotten.drawings, forgotten.files) == (1, 1, 4)  # tune, movement, cutter, settings
+    assert list(shop.files.digests()) == []
+
+
 def test_a_tune_that_another_order_still_needs_stays_for_it(shop: Parts) -> None:
     old, young = released(shop, days_ago=11), placed(shop, asker=OTHER_SHOP)
 
