@@ -259,26 +259,6 @@ def check_document(
         raise DocumentError(document=document, problems=problems) from error
 
 
-def check_worths(stated: Mapping[str, Json], *, document: str) -> None:
-    """See that what is stated of numbers' worth is right, where it is of no further use.
-
-    Args:
-        stated: The stated objects by the JSON pointer of the number; empty for none.
-        document: Word for error messages.
-
-    Raises:
-        DocumentError: With one problem per fault, each with its JSON pointer.
-    """
-    problems: list[Problem] = []
-    for pointer, worth in stated.items():
-        try:
-            check_document(Stated, worth, document=document)
-        except DocumentError as error:
-            problems += [Problem(pointer=f"{pointer}{p.pointer}", message=p.message) for p in error.problems]
-    if problems:
-        raise DocumentError(document=document, problems=tuple(problems))
-
-
 def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
     place = "".join(f"/{_escaped(str(part))}" for part in fault["loc"] if part not in union_tags)
     if fault["type"] == "extra_forbidden":

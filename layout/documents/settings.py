@@ -4,7 +4,7 @@ from typing import Annotated, Literal, Self
 
 from pydantic import Field, model_validator
 
-from layout.documents.reading import NotNegative, Time, check_document, check_worths, read_json
+from layout.documents.reading import NotNegative, Time, check_document, read_json
 from layout.documents.settings_part import IS_WHOLE, Channel, SettingsPart, Share
 from layout.documents.settings_passage import Passage, Speed
 from layout.documents.settings_writing import Writing
@@ -143,6 +143,5 @@ def read_settings(text: str | bytes) -> Settings:
     Raises:
         DocumentError: Not JSON, or not valid settings; names every fault found.
     """
-    plain, stated = read_json(text, document="settings")
-    check_worths(stated, document="settings")
+    plain, _ = read_json(text, document="settings")
     return check_document(Settings, plain, document="settings")

@@ -15,7 +15,6 @@ from layout.documents.reading import (
     Part,
     Title,
     check_document,
-    check_worths,
     read_json,
 )
 from layout.limits import limit
@@ -221,6 +220,5 @@ def read_sheet_job(text: str | bytes) -> SheetJob:
     Raises:
         DocumentError: Not JSON, or not a valid sheet job; names every fault found.
     """
-    plain, stated = read_json(text, document="sheet job")
-    check_worths(stated, document="sheet job")
+    plain, _ = read_json(text, document="sheet job")
     return check_document(SheetJob, plain, document="sheet job")

@@ -20,9 +20,9 @@ class QuietPlanner(FakePlanner):
     """Plans at once, and names the tune in every file, so that no two orders have the same."""
 
     def lay_out_discs(
-        self, tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None
+        self, tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None, *, most_s: float | None = None
     ) -> tuple[FakeLayout, ...]:
-        layouts = super().lay_out_discs(tune, movement, cutter, settings, clock)
+        layouts = super().lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
         name = hashlib.sha256(tune).hexdigest()
         return tuple(replace(layout, title=name, record={**layout.record, "title": name}) for layout in layouts)
 
@@ -33,12 +33,14 @@ files_of = _PLANNER.files_of
 check_drawing = _PLANNER.check_drawing
 
 
-def lay_out_discs(tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None) -> tuple[Any, ...]:
+def lay_out_discs(
+    tune: bytes, movement: Any, cutter: Any, settings: Any, clock: Any = None, *, most_s: float | None = None
+) -> tuple[Any, ...]:
     """Do first what the tune is called, such as `do:sleep 0.5;`, if it is called anything of the kind."""
     asked = re.search(rb"do:([a-z-]+) ?([\d.]*);", tune)
     if asked is not None:
         _DEEDS[asked[1]](asked[2])
-    return _PLANNER.lay_out_discs(tune, movement, cutter, settings, clock)
+    return _PLANNER.lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
 
 
 def _fill_memory(_: bytes) -> None:

@@ -10,7 +10,6 @@ from service.access.first_start import FirstKey
 from service.access.keys import find_key
 from service.access.scopes import Scope
 from service.commands import keys
-from service.commands.main import COMMANDS
 from service.parts import Parts
 from tests.service.commands.conftest import Discwright
 
@@ -23,7 +22,6 @@ def run(
     any_parts: Parts, discwright: Discwright, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> Any:
     """Runs the command on the database of `any_parts`; gives the code and what it wrote."""
-    monkeypatch.setitem(COMMANDS, "keys", keys)
     monkeypatch.setenv("DISCWRIGHT_DATA", str(any_parts.settings.places.data_directory))
     monkeypatch.setenv("DATABASE_URL", any_parts.settings.database_url)
 
@@ -141,7 +139,6 @@ def test_what_cannot_be_asked_is_a_clear_error_in_one_line(
     arguments: tuple[str, ...],
     told: str,
 ) -> None:
-    monkeypatch.setitem(COMMANDS, "keys", keys)
     monkeypatch.setenv("DISCWRIGHT_DATA", str(parts.settings.places.data_directory))
 
     code = discwright("keys", *arguments)
@@ -155,7 +152,6 @@ def test_what_cannot_be_asked_is_a_clear_error_in_one_line(
 def test_a_database_that_cannot_be_used_is_a_clear_error(
     discwright: Discwright, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    monkeypatch.setitem(COMMANDS, "keys", keys)
     monkeypatch.setenv("DISCWRIGHT_DATA", "/proc/nowhere")
 
     code = discwright("keys", "list")
@@ -177,7 +173,6 @@ def test_the_first_key_is_told_with_what_to_do_with_it() -> None:
 def test_the_help_tells_what_each_scope_allows(
     discwright: Discwright, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    monkeypatch.setitem(COMMANDS, "keys", keys)
 
     with pytest.raises(SystemExit) as ended:
         discwright("keys", "--help")
