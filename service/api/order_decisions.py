@@ -30,6 +30,8 @@ from service.orders.views import OrderView
 from service.parts import Parts
 from service.store.holds import FileKeeper
 
+MOST_DIGITS = 18  # of a version: as many as fit eight bytes
+
 ModelT = TypeVar("ModelT", bound=Part)
 
 
@@ -169,5 +171,6 @@ def _version_seen(asked: Request) -> int | None:
     tags = asked.if_match
     if not tags or tags.star_tag:
         return None
-    versions = [tag for tag in tags.as_set() if tag.isdigit()]
+    # An empty tag, which the web library gives as None, is none of ours either.
+    versions = [tag for tag in tags.as_set() if tag and tag.isascii() and tag.isdigit() and len(tag) <= MOST_DIGITS]
     return int(versions[0]) if len(versions) == 1 else -1  # no version is negative: nothing matches

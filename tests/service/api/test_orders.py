@@ -323,6 +323,13 @@ def test_a_decision_about_what_has_changed_is_refused(shop: Shop) -> None:
     assert shop.decide(order_id, "release", {**shop.shop, "If-Match": now}, by="A. Maker").status_code == 200
 
 
+@pytest.mark.parametrize("tag", ['""', '"", W/"N"', f'"{"9" * 400}"', '"²"', '"1", "2"'])
+def test_a_tag_that_is_none_of_ours_matches_no_order(shop: Shop, tag: str) -> None:
+    order_id = shop.ready()
+
+    problem_of(shop.decide(order_id, "release", {**shop.shop, "If-Match": tag}, by="A. Maker"), "order-changed")
+
+
 def test_a_release_sent_twice_with_its_key_is_one_release(shop: Shop) -> None:
     order_id = shop.ready()
     once = {**shop.shop, "Idempotency-Key": '"release"'}
