@@ -14,12 +14,11 @@ from packaging.requirements import Requirement
 from packaging.utils import canonicalize_name
 
 TOP = Path(__file__).parent.parent
-# A migration is one long list of steps, made from the tables, and the shapes of the client are made from the API
-# document: their length says nothing.
+# A migration is one long list of steps, made from the tables: its length says nothing.
 MODULES = sorted(
     path
     for path in [*TOP.glob("layout/**/*.py"), *TOP.glob("service/**/*.py")]
-    if path.parent.name != "versions" and path.name != "shapes.py"
+    if path.parent.name != "versions"
 )
 
 # The stages in the order of the walk, each with the module of its type, which later stages may import.

@@ -1,12 +1,13 @@
 """Writes the typed part of the client from an API document.
 
-`python -m service.client.generate FILE` reads the document, or - for standard input, and writes `shapes.py` and
-`operations.py` beside this file. Where the service runs, curl gives the document at /openapi.json.
+`python -m service.client.generate FILE` reads the document, or - for standard input, and writes the folder
+`shapes` and `operations.py` beside this file. Where the service runs, curl gives the document at /openapi.json.
 """
 
 import json
 import keyword
 import re
+import shutil
 import sys
 import textwrap
 from collections.abc import Iterator
@@ -18,18 +19,48 @@ FORM = "multipart/form-data"
 # Documents that people write: given and taken as they are.
 WHOLE = ("Movement", "Cutter", "Settings", "SheetJob")
 TYPES = {"string": "str", "integer": "int", "number": "float", "boolean": "bool", "null": "None"}
+COMMON = "common"  # the module of shapes that several groups of operations share
 MOST = 120  # characters of a line
 USAGE = "usage: python -m service.client.generate FILE, or - for standard input\n"
 HEAD = '"""{what} Written by generate.py from the API document; not to be changed by hand."""\n\n'
 
 
-def shapes_of(document: Any) -> str:
-    """The module of typed dictionaries, one for each schema of what is sent and told in JSON."""
+def shapes_of(document: Any) -> dict[str, str]:
+    """The package of typed dictionaries, one for each schema of what is sent and told in JSON, by module.
+
+    A module holds what one group of operations alone sends and is told; what several do stands in common.py.
+    """
     schemas = document["components"]["schemas"]
-    wanted = sorted(_reached(_in_json(document), schemas))
-    blocks = [_shape(name, schemas[name]) for name in wanted]
-    imports = "from typing import Any, NotRequired, TypedDict\n"
-    return HEAD.format(what="What is sent and told.") + imports + "\n\n" + "\n\n\n".join(blocks) + "\n"
+    homes = _homes(document, schemas)
+    modules = {
+        module: _shapes_module(module, [name for name in homes if homes[name] == module], homes, schemas)
+        for module in sorted(set(homes.values()))
+    }
+    by_module = sorted(homes.items(), key=lambda pair: (pair[1], pair[0].lower()))
+    handed_on = [f"from service.client.shapes.{module} import {name} as {name}" for name, module in by_module]
+    face = HEAD.format(what="What is sent and told.") + "\n".join(handed_on) + "\n"
+    return {"__init__.py": face, **{f"{module}.py": text for module, text in modules.items()}}
+
+
+def _homes(document: Any, schemas: Any) -> dict[str, str]:
+    """The module that each schema stands in, by the schema's name, in alphabetical order."""
+    groups: dict[str, set[str]] = {}
+    for tag, told in _in_json(document):
+        for name in _reached([told], schemas):
+            groups.setdefault(name, set()).add(tag.replace(" ", "_"))
+    return {name: groups[name].pop() if len(groups[name]) == 1 else COMMON for name in sorted(groups)}
+
+
+def _shapes_module(module: str, names: list[str], homes: dict[str, str], schemas: Any) -> str:
+    text = "\n\n\n".join(_shape(name, schemas[name]) for name in names)
+    typing = [word for word in ("Any", "NotRequired", "TypedDict") if re.search(rf"\b{word}\b", text)]
+    foreign = sorted({name for own in names for name in _names_in(schemas[own])} - set(names))
+    imports = [f"from typing import {', '.join(typing)}\n"] if typing else []
+    if foreign:  # of common.py alone: what another group needs too stands there
+        imports.append("\n" * bool(imports) + f"from service.client.shapes.{COMMON} import {', '.join(foreign)}\n")
+    space = "\n" * bool(imports) * (2 if text.startswith("class") else 1)
+    said = f"What is sent and told: {module.replace('_', ' ')}."
+    return HEAD.format(what=said) + "".join(imports) + space + text + "\n"
 
 
 def operations_of(document: Any) -> str:
@@ -61,18 +92,23 @@ def main(arguments: list[str]) -> int:
     text = sys.stdin.read() if arguments[0] == "-" else Path(arguments[0]).read_text(encoding="utf-8")
     document = json.loads(text)
     here = Path(__file__).parent
-    (here / "shapes.py").write_text(shapes_of(document), encoding="utf-8")
+    shutil.rmtree(here / "shapes", ignore_errors=True)  # a group that is no more leaves no module
+    (here / "shapes").mkdir()
+    for name, content in shapes_of(document).items():
+        (here / "shapes" / name).write_text(content, encoding="utf-8")
     (here / "operations.py").write_text(operations_of(document), encoding="utf-8")
     return 0
 
 
-def _in_json(document: Any) -> Iterator[Any]:
+def _in_json(document: Any) -> Iterator[tuple[str, Any]]:
+    """Every schema of what is sent and told in JSON, with the group of its operation."""
     for operations in document["paths"].values():
         for operation in operations.values():
+            [tag] = operation["tags"]
             told = [operation.get("requestBody", {}), *_good(operation)]
-            yield from (one["content"][JSON]["schema"] for one in told if JSON in one.get("content", {}))
+            yield from ((tag, one["content"][JSON]["schema"]) for one in told if JSON in one.get("content", {}))
             form = operation.get("requestBody", {}).get("content", {}).get(FORM, {}).get("schema", {})
-            yield from form.get("properties", {}).values()
+            yield from ((tag, part) for part in form.get("properties", {}).values())
 
 
 def _good(operation: Any) -> list[Any]:

@@ -1,0 +1,21 @@
+"""What is sent and told: events. Written by generate.py from the API document; not to be changed by hand."""
+
+from typing import Any, TypedDict
+
+
+class EventAnswer(TypedDict):
+    """What happened to an order."""
+
+    seq: int
+    order: str
+    type: str
+    at: str
+    by: str | None
+    data: dict[str, Any]
+
+
+class EventsAnswer(TypedDict):
+    """Events, the oldest first."""
+
+    events: list["EventAnswer"]
+    last: int
