@@ -16,9 +16,7 @@ from packaging.utils import canonicalize_name
 TOP = Path(__file__).parent.parent
 # A migration is one long list of steps, made from the tables: its length says nothing.
 MODULES = sorted(
-    path
-    for path in [*TOP.glob("layout/**/*.py"), *TOP.glob("service/**/*.py")]
-    if path.parent.name != "versions"
+    path for path in [*TOP.glob("layout/**/*.py"), *TOP.glob("service/**/*.py")] if path.parent.name != "versions"
 )
 
 # The stages in the order of the walk, each with the module of its type, which later stages may import.

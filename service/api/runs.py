@@ -35,7 +35,7 @@ from service.orders.asked import NamedDocument
 from service.orders.faults import InputRefusedError
 from service.orders.kept_answers import Given
 from service.orders.run_views import RunView, find_run, items_of, list_runs
-from service.orders.running import AskedRun, Pair, begin_run, pinned
+from service.orders.running import AlsoOfRun, AskedRun, Pair, begin_run, pinned
 from service.parts import Parts
 from service.store.holds import FileKeeper
 
@@ -128,9 +128,14 @@ def _begun(parts: Parts, asker: Asker, asked: Request) -> Response:
     except ArchiveError as fault:
         raise ProblemError(name="archive-unreadable", detail=str(fault)) from fault
     keeper = FileKeeper(parts.store, parts.files)
-    try:
+
+    def beginning(also: AlsoOfRun) -> RunView:
+        # Read only where the run is not begun yet: a movement withdrawn since changes no answer that is kept.
         run = _asked(parts, asker, brought["archive"], body, names)
-        return once(parts, asked, asker, brought, lambda also: begin_run(parts.store, keeper, asker, run, also), _given)
+        return begin_run(parts.store, keeper, asker, run, also)
+
+    try:
+        return once(parts, asked, asker, brought, beginning, _given)
     except InputRefusedError as fault:
         raise _refused(fault.pointer, str(fault)) from fault
 

@@ -17,7 +17,7 @@ from service.orders.placing import Also
 from service.orders.states import EventType, State
 from service.orders.views import OrderView, order_view
 from service.store.store import Store
-from service.store.tables import Order, Plan, PlanFile
+from service.store.tables import Event, Order, Plan, PlanFile
 
 REPORTS = {
     "taken": EventType.TAKEN,
@@ -177,6 +177,8 @@ def report_on_order(store: Store, asker: Asker, seen: Seen, what: str, told: dic
 def customer_says(store: Store, order_id: str, revision: int, verdict: str, *, by: str, note: str | None) -> OrderView:
     """Write down that a customer accepted or declined a proof; what follows is the shop's to decide.
 
+    The same said again at once is written once.
+
     Args:
         store: The database.
         order_id: Which, by the signed link.
@@ -194,13 +196,21 @@ def customer_says(store: Store, order_id: str, revision: int, verdict: str, *, b
         waits = order is not None and order.state in (State.READY, State.ATTENTION)
         if order is None or not waits or order.plan_revision != revision:
             raise StateForbidsError("this proof is not the one to decide about any more; ask for a new link")
-        now = store.now(session)
-        _change(session, order, State(order.state), now, {})
         data = {"revision": revision, "note": note}
-        add_event(session, order, VERDICTS[verdict], at=now, by=by, data=data)
+        if not _is_last_said(session, order, VERDICTS[verdict], by, data):
+            now = store.now(session)
+            _change(session, order, State(order.state), now, {})
+            add_event(session, order, VERDICTS[verdict], at=now, by=by, data=data)
         return order_view(session, order)
 
     return store.again(saying)
+
+
+def _is_last_said(session: Session, order: Order, kind: EventType, by: str, data: Mapping[str, Any]) -> bool:
+    """Whether the last thing a customer said is just this: sent twice, or written before the connection was lost."""
+    verdicts = select(Event).where(Event.order_id == order.id, Event.type.in_([one.value for one in VERDICTS.values()]))
+    last = session.scalars(verdicts.order_by(Event.seq.desc()).limit(1)).first()
+    return last is not None and (last.type, last.by, last.data) == (kind.value, by, data)
 
 
 def _decide(

@@ -17,6 +17,7 @@ log = logging.getLogger("service.a_test")
 @pytest.fixture
 def root() -> Iterator[logging.Logger]:
     """The root of all logs, given back as it was."""
+    forget()  # what a request of a test before told in this thread
     logger = logging.getLogger()
     handlers, level = logger.handlers[:], logger.level
     yield logger
@@ -47,7 +48,7 @@ def test_a_line_is_one_json_object_that_says_what_it_is_about(root: logging.Logg
     assert len(first["time"]) == 27
     assert first["time"].endswith("Z")
     assert "password" not in first
-    assert after.get("request_id") != "req_1"
+    assert "request_id" not in after
 
 
 def test_a_trace_stands_in_its_line_without_secrets(root: logging.Logger) -> None:

@@ -256,6 +256,16 @@ def test_a_customer_decides_about_the_plan_that_was_seen_alone(shop: Parts) -> N
         customer_says(shop.store, order.id, 1, "accepted", by="B. Client", note=None)
 
 
+def test_a_customer_who_says_the_same_twice_has_said_it_once(shop: Parts) -> None:
+    order = placed(shop)
+    planned(shop, order.id)
+    for verdict in ("accepted", "accepted", "declined", "accepted"):
+        customer_says(shop.store, order.id, 1, verdict, by="B. Client", note=None)
+
+    said = [kind for kind in story(shop, order.id) if kind in ("order.accepted", "order.declined")]
+    assert said == ["order.accepted", "order.declined", "order.accepted"]
+
+
 def test_nobody_decides_about_an_order_that_has_changed_meanwhile(shop: Parts) -> None:
     order = placed(shop)
     planned(shop, order.id)
