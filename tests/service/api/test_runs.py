@@ -93,6 +93,23 @@ def small_shop(parts: Parts) -> Iterator[Shop]:
     opened.close()
 
 
+def test_a_run_sent_again_gets_its_answer_though_its_movement_was_withdrawn_since(shop: Shop) -> None:
+    own = {**shop.get("/v1/movements/tarnlight-17"), "id": "own-17"}
+    address = "/v1/movements/own-17"
+    made = shop.http.put(address, json=own, headers={**shop.shop, "If-None-Match": "*"})
+    assert made.status_code == 201, made.text
+    archive, run = archive_of(a=TUNE), {"movements": ["own-17"]}
+
+    first = shop.ask(archive, run, key='"once"')
+    tag = shop.http.get(address, headers=shop.shop).headers["ETag"]
+    gone = shop.http.delete(address, headers={**shop.shop, "If-Match": tag})
+    again, new = shop.ask(archive, run, key='"once"'), shop.ask(archive, run, key='"another"')
+
+    assert (first.status_code, gone.status_code, again.status_code) == (202, 204, 202)
+    assert again.data == first.data
+    problem_of(new, "document-invalid")
+
+
 def test_every_tune_of_the_archive_is_ordered_for_every_movement_named(shop: Shop) -> None:
     run_id = shop.opened(archive_of(b=TUNE, a=TUNE), {"movements": ["fernhollow-31", "tarnlight-17"], "reference": "R"})
 
