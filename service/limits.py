@@ -73,6 +73,34 @@ class Limits:
         16 * MIB, "bytes", "how much of a refused body is still read, so that the sender gets to read the answer"
     )
 
+    head_s: int = limit(
+        10, "seconds", "longest a request's head may take from the connection on: heads fit a packet or two"
+    )
+    head_bytes: int = limit(
+        64 * 1024, "bytes", "longest head of a request: several times what browsers send with all their cookies"
+    )
+    body_s: int = limit(
+        10, "seconds", "longest a request's body may take beside its bytes at body_bytes_per_s; then the answer is 408"
+    )
+    body_bytes_per_s: int = limit(
+        16 * 1024, "bytes/s", "slowest sender that is waited for, on the average: a poor mobile line has twice as much"
+    )
+    gathered_bytes: int = limit(
+        256 * 1024, "bytes", "longest body that holds no thread while it comes; nearly every tune is shorter"
+    )
+    taker_s: int = limit(
+        30, "seconds", "longest that a client may take none of an answer: as much as a broken line takes to come back"
+    )
+    linger_s: int = limit(
+        2, "seconds", "how long a connection stays open after its answer, so that the client gets to read it"
+    )
+    connections: int = limit(
+        500, "connections", "most connections of one web process; a process may open 1,024 files on a usual system"
+    )
+    connections_per_address: int = limit(
+        100, "connections", "most of them of one address whose requests are not whole; the oldest is let go for a new"
+    )
+
     def told(self) -> tuple[Limit, ...]:
         """Every limit: those of reading a tune, of sheet jobs, then these, in the order of the fields."""
         # The computation takes a second to import, and is needed here only for what it limits itself.

@@ -17,6 +17,7 @@ from gunicorn.glogging import Logger
 
 from service.logs import start_logging
 from service.settings import settings_from
+from service.web_worker import GatheringWorker
 
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
 COMPUTATION = ("layout.walk", "layout.sheet_walk", "layout.trial_walk")
@@ -48,12 +49,11 @@ class OneLog(Logger):  # type: ignore[misc]
 
 # Names that gunicorn knows.
 wsgi_app = "service.app:create_app()"
-worker_class = "gthread"
+worker_class = GatheringWorker
 logger_class = OneLog
 control_socket_disable = True
 timeout = 120  # s; a worker that gives no sign of life for so long is replaced
-# A connection is closed after its answer: one kept open would count against those a process takes on, see
-# `service.commands.web.gunicorn_command`, and a new one costs little on a network where a proxy stands before us.
+# A connection is closed after its answer: a new one costs little on a network where a proxy stands before us.
 keepalive = 0
 
 

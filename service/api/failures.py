@@ -1,6 +1,7 @@
 """From whatever was raised to problem details: the one place where exceptions become answers."""
 
 import logging
+from contextlib import suppress
 from http import HTTPStatus
 from typing import Any
 from urllib.parse import quote
@@ -15,6 +16,7 @@ from service.api.problems import ProblemError, problem_response
 from service.limits import Limits
 from service.orders.faults import OrderFault
 from service.store.faults import StoreError
+from service.web_gathering import SlowBodyError
 from service.wording import shortened, told_in_short
 
 log = logging.getLogger("discwright")
@@ -49,6 +51,10 @@ def answer_failures(app: Flask, limits: Limits) -> None:
     @app.errorhandler(StoreError)
     def _(fault: StoreError) -> Response:
         return tell(problem_of_store(fault))
+
+    @app.errorhandler(SlowBodyError)
+    def _(fault: SlowBodyError) -> Response:
+        return tell(ProblemError(name="request-too-slow", detail="the body came too slowly to be waited for"))
 
     @app.errorhandler(HTTPException)
     def _(refusal: HTTPException) -> Response | AnyResponse:
@@ -149,5 +155,6 @@ def _drain(most_bytes: int) -> None:
         return  # the server does not mark the end of a body; reading on would wait for ever
     body = request.environ["wsgi.input"]
     left = most_bytes
-    while left > 0 and (chunk := body.read(min(left, DRAIN_STEP_BYTES))):
-        left -= len(chunk)
+    with suppress(SlowBodyError):  # who sends no more gets the answer now
+        while left > 0 and (chunk := body.read(min(left, DRAIN_STEP_BYTES))):
+            left -= len(chunk)

@@ -95,6 +95,14 @@ KINDS = (
         "JSON with links to the files of each, or as an archive of them all.",
     ),
     ProblemKind(
+        name="request-too-slow",
+        status=408,
+        title="The request did not come in the time it is waited for",
+        what_to_do="Send it again, over a line that carries it faster; GET /v1/limits says under head_s, body_s and "
+        "body_bytes_per_s what is waited for.",
+        try_again=True,
+    ),
+    ProblemKind(
         name="upload-too-large",
         status=413,
         title="The request body is too large",

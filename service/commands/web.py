@@ -168,8 +168,6 @@ def gunicorn_command(web: WebAsked, bind: str, settings: ServiceSettings) -> lis
         *("--bind", bind),
         *("--workers", str(web.workers)),
         *("--threads", str(web.threads)),
-        # No more than can be answered: a process whose threads all wait or stream leaves the next to the others.
-        *("--worker-connections", str(web.threads)),
         *("--graceful-timeout", str(max(1, settings.work.stop_within_s - STOP_MARGIN_S))),
     ]
 

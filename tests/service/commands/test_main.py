@@ -141,7 +141,6 @@ def test_web_becomes_gunicorn_on_the_loopback_address(
         "--bind": f"127.0.0.1:{port}",
         "--workers": "3",
         "--threads": "5",
-        "--worker-connections": "5",
         "--graceful-timeout": "18",
     }
     assert os.environ["DISCWRIGHT_ON_LOOPBACK"] == "yes"

@@ -1,0 +1,40 @@
+"""What a web process answers before there is a request to answer: one that is not whole."""
+
+import secrets
+from http import HTTPStatus
+
+from service.api.answers import NOTHING_LOADS, json_bytes
+from service.api.problems import PROBLEM_MEDIA_TYPE, PROBLEMS
+from service.api.request_ids import FIELD, RANDOM_BYTES
+
+
+def refusal(name: str, detail: str) -> bytes:
+    """A whole answer, head and body, that tells a problem and ends the connection.
+
+    Args:
+        name: The kind, a key of PROBLEMS.
+        detail: What went wrong this time.
+    """
+    kind = PROBLEMS[name]
+    request_id = f"req_{secrets.token_hex(RANDOM_BYTES)}"
+    body = json_bytes(
+        {
+            "type": kind.type,
+            "title": kind.title,
+            "status": kind.status,
+            "detail": detail,
+            "request_id": request_id,
+            "try_again": kind.try_again,
+        }
+    )
+    head = (
+        f"HTTP/1.1 {kind.status} {HTTPStatus(kind.status).phrase}",
+        f"Content-Type: {PROBLEM_MEDIA_TYPE}",
+        f"Content-Length: {len(body)}",
+        f"{FIELD}: {request_id}",
+        "Cache-Control: no-store",
+        "X-Content-Type-Options: nosniff",
+        f"Content-Security-Policy: {NOTHING_LOADS}",
+        "Connection: close",
+    )
+    return "\r\n".join((*head, "", "")).encode() + body
