@@ -88,6 +88,7 @@ def plan_told(order_id: str, plan: PlanView) -> dict[str, Any]:
     released = plan.released_at is not None
     return {
         "revision": plan.revision,
+        "tag": plan.tag,
         "engine_version": plan.engine_version,
         "inputs": plan.inputs,
         "title": plan.told["title"],

@@ -102,7 +102,7 @@ class _Decisions:
 
     def release(self, asker: Asker, order_id: str) -> Response:
         text, body = self._body(ReleaseBody, "release")
-        said = Release(by=body.by, despite_findings=body.despite_findings)
+        said = Release(by=body.by, plan=body.plan, despite_findings=body.despite_findings)
         store = self._parts.store
         return self._once(asker, text, lambda also: release_order(store, asker, _seen(order_id), said, also))
 

@@ -27,7 +27,8 @@ KINDS = (
         name="order-changed",
         status=412,
         title="The order is not as it was when it was read",
-        what_to_do="Read it again, look at what changed, then decide with its new entity tag in If-Match.",
+        what_to_do="Read it again, look at what changed, then decide with its new entity tag in If-Match; a release "
+        "names the plan that was seen by its tag.",
     ),
     ProblemKind(
         name="not-released",

@@ -15,9 +15,9 @@ from service.orders.faults import ChangedMeanwhileError, FindingsStandError, Sta
 from service.orders.finding import order_row
 from service.orders.placing import Also
 from service.orders.states import EventType, State
-from service.orders.views import OrderView, order_view
+from service.orders.views import OrderView, PlanView, order_view, plan_view
 from service.store.store import Store
-from service.store.tables import Event, Order, Plan, PlanFile
+from service.store.tables import Event, Order, Plan
 
 REPORTS = {
     "taken": EventType.TAKEN,
@@ -34,10 +34,12 @@ class Release:
 
     Attributes:
         by: Who, as the person is called.
+        plan: The tag of the plan that the person has seen; no other is released.
         despite_findings: Why it may be cut although something stands; None where nothing may stand.
     """
 
     by: str
+    plan: str
     despite_findings: str | None = None
 
 
@@ -58,11 +60,12 @@ def release_order(store: Store, asker: Asker, seen: Seen, release: Release, also
     """Release an order's plan: from now on it never changes, and its cutting files may be taken.
 
     Despite an error-level finding the plan has no cutting files yet: it goes back to a worker, which makes them,
-    marked, and releases them. Where a person must decide for another reason, the reason is kept and it is released.
+    marked with the reason, and releases them if the plan is still the one that was seen. Where a person must decide
+    for another reason, the reason is kept and it is released.
 
     Raises:
         OrderUnknownError: There is none for the asker.
-        ChangedMeanwhileError: It is not as the asker has seen it.
+        ChangedMeanwhileError: It is not as the asker has seen it, or its plan is another than the one named.
         StateForbidsError: It is neither ready nor waits for a person.
         FindingsStandError: Something stands, and no reason is given.
     """
@@ -71,12 +74,17 @@ def release_order(store: Store, asker: Asker, seen: Seen, release: Release, also
         state = State(order.state)
         if state not in (State.READY, State.ATTENTION):
             raise StateForbidsError(f"the order is {state}; only one that is ready or in attention can be released")
+        plan, shown = _plan(session, order), plan_view(session, order.id, order.plan_revision)
+        if shown is None or shown.tag != release.plan:
+            in_force = shown and shown.tag
+            raise ChangedMeanwhileError(
+                f"the plan in force is {in_force}, not {release.plan}, which was seen; look at it, then decide about it"
+            )
         if state is State.ATTENTION and release.despite_findings is None:
             raise FindingsStandError(
                 f"a person must decide: {order.reason}; give despite_findings, a reason, or replan"
             )
-        plan = _plan(session, order)
-        if not _has_cutting_files(session, plan):
+        if not _has_cutting_files(plan, shown, release.despite_findings):
             columns = {"despite_findings": release.despite_findings, "despite_by": release.by, "reason": None}
             _change(session, order, State.RECEIVED, now, columns)
             return
@@ -237,10 +245,13 @@ def _change(session: Session, order: Order, to: State, now: datetime, columns: M
         raise ChangedMeanwhileError("the order was changed at the same moment; read it again")
 
 
-def _has_cutting_files(session: Session, plan: Plan) -> bool:
-    """Whether they were made: not where an error-level finding stands and nobody had said why they are wanted."""
-    of_plan = (PlanFile.order_id == plan.order_id, PlanFile.revision == plan.revision)
-    return session.scalars(select(PlanFile).where(*of_plan, PlanFile.is_for_cutting).limit(1)).first() is not None
+def _has_cutting_files(plan: Plan, shown: PlanView, reason: str | None) -> bool:
+    """Whether they were made, and say why they may be cut: not where an error stands and nobody had said why.
+
+    Those of a repeat are given as they were, with the reason from before.
+    """
+    says_why = plan.good_to_cut or "repeat_of" in plan.inputs or plan.inputs.get("despite_findings") == reason
+    return says_why and any(file.is_for_cutting for file in shown.files)
 
 
 def _plan(session: Session, order: Order) -> Plan:

@@ -1,5 +1,6 @@
 """From an order's inputs to its plan: the walk, and its files kept by their digests."""
 
+import hashlib
 import json
 import time
 from collections.abc import Mapping, Sequence
@@ -57,12 +58,14 @@ def _lost_share(reports: Sequence[Mapping[str, Any]]) -> float:
 
 
 def _disc_told(laid_out: Layout, content: Mapping[str, bytes], report: Mapping[str, Any]) -> dict[str, Any]:
-    findings = json.loads(content["layout.json"])["findings"]
+    layout = json.loads(content["layout.json"])
+    findings = layout["findings"]
     making = json.loads(content["making.json"])
     return {
         "number": laid_out.disc_number,
         "of": laid_out.disc_count,
         "fingerprint": laid_out.fingerprint,
+        "layout_sha256": _without_reason(layout),
         "good_to_cut": laid_out.good_to_cut,
         "findings": {level: sum(finding["level"] == level for finding in findings) for level in LEVELS},
         "worth": report["worth"],
@@ -71,6 +74,12 @@ def _disc_told(laid_out: Layout, content: Mapping[str, bytes], report: Mapping[s
         "time_s": making["time_s"],
         "price": None if making["total"] is None else {"amount": making["total"], "currency": making["currency"]},
     }
+
+
+def _without_reason(layout: Mapping[str, Any]) -> str:
+    """A digest of all that was laid out and found, but not of why it is made despite that: the same disc, or not."""
+    told = {name: value for name, value in layout.items() if name != "despite_findings"}
+    return hashlib.sha256(json.dumps(told, sort_keys=True).encode()).hexdigest()
 
 
 def _kept(

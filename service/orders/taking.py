@@ -119,7 +119,7 @@ def publish(store: Store, taken: Taken, planned: PlannedOrder) -> bool:
             return False
         now = store.now(session)
         revision = order.plan_revision + 1
-        state, reason = _verdict(order, planned)
+        state, reason = _verdict(order, planned, session.get(Plan, (order.id, order.plan_revision)))
         released = state is State.RELEASED
         plan = Plan(
             order_id=order.id,
@@ -135,6 +135,8 @@ def publish(store: Store, taken: Taken, planned: PlannedOrder) -> bool:
             release_reason=order.despite_findings if released else None,
         )
         columns = {**_LET_GO, "plan_revision": revision, "reason": reason, "killed": 0}
+        if not released:  # a word that it may be cut is for what was seen, and is used up
+            columns |= {"despite_findings": None, "despite_by": None}
         if not change(session, order, state, at=now, columns=columns):
             return False
         session.add(plan)
@@ -219,10 +221,22 @@ def _held(session: Session, taken: Taken) -> Order | None:
     return order if holds else None
 
 
-def _verdict(order: Order, planned: PlannedOrder) -> tuple[State, str | None]:
-    """The state that a plan leads to, and why a person must decide."""
+def _verdict(order: Order, planned: PlannedOrder, seen: Plan | None) -> tuple[State, str | None]:
+    """The state that a plan leads to, and why a person must decide.
+
+    Args:
+        order: As it is.
+        planned: The plan.
+        seen: The plan in force until now: the one that was seen by who said that it may be cut despite findings.
+    """
     if order.despite_findings is not None:
-        return State.RELEASED, None
+        if seen is not None and _laid_out(seen.told) == _laid_out(planned.told):
+            return State.RELEASED, None
+        return (
+            State.ATTENTION,
+            f"made again for its release it came out otherwise than revision {order.plan_revision}, which was seen; "
+            "look at this one, then decide about it",
+        )
     if not planned.good_to_cut:
         count = sum(disc["findings"]["error"] for disc in planned.told["discs"])
         return State.ATTENTION, f"{count} error-level finding{'s' if count > 1 else ''}: it is not good to cut as it is"
@@ -232,6 +246,10 @@ def _verdict(order: Order, planned: PlannedOrder) -> tuple[State, str | None]:
             f"{planned.lost_share:.2%} of the tune is lost, and {order.most_lost_share:.2%} was said to be the most",
         )
     return (State.RELEASED if order.release_alone else State.READY), None
+
+
+def _laid_out(told: Mapping[str, Any]) -> list[str]:
+    return [str(disc.get("layout_sha256")) for disc in told["discs"]]
 
 
 def _inputs_of(order: Order) -> dict[str, Any]:

@@ -1,5 +1,6 @@
 """Orders as they are shown: values read in one transaction, apart from rows."""
 
+import hashlib
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
@@ -40,6 +41,17 @@ class PlanView:
     release_reason: str | None
     superseded_at: datetime | None
     files: tuple[FileView, ...]
+
+    @property
+    def tag(self) -> str | None:
+        """Names this plan and no other: its revision and what its files are; None where they were deleted.
+
+        A revision alone could be given twice: by a database that a backup brought back.
+        """
+        if not self.files:
+            return None
+        lines = (f"{file.disc} {file.name} {file.sha256}\n" for file in self.files)
+        return f"{self.revision}-{hashlib.sha256(''.join(lines).encode()).hexdigest()}"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -14,6 +14,8 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.orders import taking
 from service.orders.asked import AskedOrder, NamedDocument
+from service.orders.deciding import Release, Seen, release_order
+from service.orders.finding import find_order
 from service.orders.placing import nothing_more, place_order
 from service.orders.planned import OrderInputs, PlannedOrder
 from service.orders.planning import plan_order
@@ -131,6 +133,21 @@ def plan_of(parts: Parts, held: Taken) -> PlannedOrder:
         not_good=held.not_good,
     )
     return plan_order(inputs, WALK, keeper)
+
+
+def plan_seen(parts: Parts, order_id: str) -> str:
+    """The tag of the plan in force, as a person sees it; "" where there is none."""
+    with parts.store.reading() as session:
+        plan = find_order(session, SHOP, order_id).plan
+    return "" if plan is None or plan.tag is None else plan.tag
+
+
+def release_seen(
+    parts: Parts, order_id: str, asker: Asker = SHOP, *, by: str = "Ada", despite: str | None = None
+) -> OrderView:
+    """The order released by a person who has looked at its plan."""
+    word = Release(by=by, plan=plan_seen(parts, order_id), despite_findings=despite)
+    return release_order(parts.store, asker, Seen(order_id=order_id), word, nothing_more)
 
 
 def planned(parts: Parts, order_id: str) -> PlannedOrder:

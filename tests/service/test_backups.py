@@ -15,7 +15,7 @@ from sqlalchemy import select, text, update
 
 from service.backups import ABOUT_NAME, DATABASE_NAME, LEAP, BackupError, back_up, restore
 from service.commands.main import main
-from service.orders.deciding import Release, Seen, cancel_order, release_order
+from service.orders.deciding import Seen, cancel_order
 from service.orders.erasing import erase_order
 from service.orders.finding import find_order
 from service.orders.placing import nothing_more
@@ -25,7 +25,7 @@ from service.settings import ServiceSettings, settings_from
 from service.store.store import Store
 from service.store.tables import Event, FileHold, Key, Order
 from tests.service.conftest import environment_of, new_database, parts_of
-from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, keeper_of, open_shop, placed, planned
+from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, keeper_of, open_shop, placed, planned, release_seen
 
 
 @dataclass
@@ -80,7 +80,7 @@ def shop(request: pytest.FixtureRequest, tmp_path: Path) -> Iterator[Shop]:
 def finished(shop: Shop) -> str:
     order = placed(shop.parts)
     planned(shop.parts, order.id)
-    release_order(shop.parts.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more)
+    release_seen(shop.parts, order.id)
     return order.id
 
 

@@ -18,6 +18,7 @@ MOST_SEQ = 9_223_372_036_854_775_807  # so
 RFC_3339 = re.compile(r"\d{4}-\d\d-\d\d[Tt ]\d\d:\d\d:\d\d(\.\d+)?([Zz]|[+-]\d\d:\d\d)?")  # the zone is asked for below
 
 
+PLAN_TAG = r"^[1-9][0-9]{0,9}-[0-9a-f]{64}$"
 def _one_line(text: str) -> str:
     if not text.isprintable():
         raise ValueError("it must be one line of printable characters")
@@ -115,7 +116,7 @@ class FileQuery(Part):
 
 
 class ReleaseBody(Part):
-    """Who releases an order, and why despite what stands."""
+    """Who releases an order, which plan of it was seen, and why despite what stands."""
 
     by: OneLine = Field(description="the person who decided", examples=["A. Maker"])
     despite_findings: Reason | None = Field(
@@ -142,6 +143,9 @@ class CancelBody(Part):
 
 class ReportBody(Part):
     """What the shop says of a released order."""
+    plan: Annotated[str, Field(pattern=PLAN_TAG)] = Field(
+        description="the tag of the plan that the person has seen, as the order tells it; no other is released"
+    )
 
     what: Literal["taken", "cut", "scrapped", "measured"]
     count: Annotated[int, Field(ge=0, le=1_000_000)] | None = Field(default=None, description="how many discs")
@@ -231,3 +235,6 @@ class EventsAnswer(Part):
 
     events: list[EventAnswer]
     last: int = Field(description="the number to ask on after")
+    tag: str | None = Field(
+        description="names this plan, by its revision and its files: a release says it; null where they were deleted"
+    )

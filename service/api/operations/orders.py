@@ -125,7 +125,8 @@ RELEASE = Operation(
     id="release_order",
     tag=TAG,
     summary="Release an order for cutting",
-    description="Its cutting files may be taken from then on. Where a person had to decide, with a reason.",
+    description="Its cutting files may be taken from then on. Where a person had to decide, with a reason. "
+    "Only the plan that was seen is released: its tag is sent along, and another one in force is a 412.",
     headers=DECIDES,
     bodies=(Body(media_type=JSON_MEDIA_TYPE, model=ReleaseBody),),
     answers=order_answers(200, 202),
@@ -133,10 +134,10 @@ RELEASE = Operation(
     examples=(
         Example(
             status=200,
-            given="a ready order",
+            given="a ready order that was looked at",
             headers={"Idempotency-Key": '"release-W-1001"'},
             media_type=JSON_MEDIA_TYPE,
-            body={"by": "A. Maker"},
+            body={"by": "A. Maker", "plan": "1-e3b0c44298fc1c149afbf4c8996fb92427ae41e4649b934ca495991b7852b855"},
         ),
     ),
 )

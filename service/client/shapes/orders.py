@@ -60,6 +60,7 @@ class PlanAnswer(TypedDict):
     """A plan: what was made for an order."""
 
     revision: int
+    tag: str | None
     engine_version: str
     inputs: dict[str, Any]
     title: str
@@ -82,9 +83,10 @@ class ProofLinkAnswer(TypedDict):
 
 
 class ReleaseBody(TypedDict):
-    """Who releases an order, and why despite what stands."""
+    """Who releases an order, which plan of it was seen, and why despite what stands."""
 
     by: str
+    plan: str
     despite_findings: NotRequired[str | None]
 
 

@@ -57,7 +57,7 @@ class World:
         elif isinstance(body, bytes):
             sent = {"data": body, "content_type": example.media_type}
         elif example.media_type:
-            sent["json"] = body
+            sent["json"] = {**body, **given["said"]} if "said" in given else body
         return self.http.open(path, method=method, query_string=dict(example.query), headers=headers, **sent)
 
     def given(self, what: str) -> dict[str, Any]:
@@ -69,6 +69,7 @@ class World:
             "a layout": self._layout,
             "an order": lambda: {"order_id": self._order()},
             "a ready order": lambda: {"order_id": self._ready()},
+            "a ready order that was looked at": self._looked_at,
             "a released order": self._released,
             "a proof": self._proof,
             "a run": self._run,
@@ -101,9 +102,15 @@ class World:
         assert self.http.get(f"/v1/orders/{order_id}", headers=self.headers).json["state"] == "ready"  # type: ignore[index]
         return order_id
 
-    def _released(self) -> dict[str, Any]:
+    def _looked_at(self) -> dict[str, Any]:
         order_id = self._ready()
-        self.post(f"/v1/orders/{order_id}/release", json={"by": "A. Maker"})
+        seen: Any = self.http.get(f"/v1/orders/{order_id}", headers=self.headers).json
+        return {"order_id": order_id, "said": {"plan": seen["plan"]["tag"]}}
+
+    def _released(self) -> dict[str, Any]:
+        looked_at = self._looked_at()
+        order_id = looked_at["order_id"]
+        self.post(f"/v1/orders/{order_id}/release", json={"by": "A. Maker", **looked_at["said"]})
         return {"order_id": order_id, "fields": {"order": {"repeat_of": order_id}}}
 
     def _run(self) -> dict[str, Any]:

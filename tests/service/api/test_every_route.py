@@ -110,7 +110,7 @@ TABLE: dict[str, Access] = {
 }
 # What a request must say to be looked at at all; of other routes nothing, or an empty object.
 BODIES: dict[str, dict[str, Any]] = {
-    "POST /v1/orders/<order_id>/release": {"by": "A. Maker"},
+    "POST /v1/orders/<order_id>/release": {"by": "A. Maker", "plan": f"1-{64 * '0'}"},
     "POST /v1/orders/<order_id>/reports": {"what": "taken"},
     "PATCH /v1/hooks/<hook_id>": {"for_all_orders": True},
 }

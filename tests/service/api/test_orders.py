@@ -65,7 +65,13 @@ class Shop:
         return order_id
 
     def decide(self, order_id: str, path: str, headers: dict[str, str], **said: Any) -> TestResponse:
+        if path == "release":
+            said = {"plan": self.plan_seen(order_id), **said}
         return self.http.post(f"/v1/orders/{order_id}/{path}", json=said, headers=headers)
+
+    def plan_seen(self, order_id: str) -> str:
+        """The tag of the plan in force."""
+        return str(self.seen(order_id, self.shop)["plan"]["tag"])
 
     def seen(self, order_id: str, headers: dict[str, str] | None = None) -> dict[str, Any]:
         answer = self.http.get(f"/v1/orders/{order_id}", headers=headers or self.web)

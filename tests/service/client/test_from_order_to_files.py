@@ -37,7 +37,7 @@ def test_a_tune_becomes_files_that_are_what_the_plan_tells(client: Client) -> No
     with pytest.raises(DamagedFileError, match="is kept back till the order is released"):
         client.download(kept_back[0])
 
-    released = client.release_order(placed["id"], {"by": "A. Maker"})
+    released = client.release_order(placed["id"], {"by": "A. Maker", "plan": str(plan["tag"])})
     assert released["plan"] is not None
     brought = {file["name"]: client.download(file) for file in released["plan"]["files"]}
 

@@ -37,6 +37,7 @@ from tests.service.shop import (
     keeper_of,
     open_shop,
     placed,
+    plan_seen,
     planned,
 )
 
@@ -106,7 +107,14 @@ def test_nothing_that_was_sent_is_left_in_the_database(web: Web, any_parts: Part
     placed_answer: Any = web.place("place-1", quote["id"]).json
     order_id = placed_answer["id"]
     planned(any_parts, order_id)
-    web.say(order_id, "release", "release-1", by=PRIVATE[2], despite_findings=PRIVATE[3])
+    web.say(
+        order_id,
+        "release",
+        "release-1",
+        by=PRIVATE[2],
+        plan=plan_seen(any_parts, order_id),
+        despite_findings=PRIVATE[3],
+    )
     web.say(order_id, "reports", "report-1", what="measured", note=PRIVATE[3])
     before = everything(any_parts)
     assert all(word in before for word in PRIVATE)
@@ -123,12 +131,13 @@ def test_nothing_that_was_sent_is_left_in_the_database(web: Web, any_parts: Part
 def test_a_request_sent_again_after_the_deletion_makes_nothing_anew(web: Web, any_parts: Parts) -> None:
     order: Any = web.place("place-1").json
     planned(any_parts, order["id"])
-    web.say(order["id"], "release", "release-1", by="Ada")
+    word = {"by": "Ada", "plan": plan_seen(any_parts, order["id"])}
+    web.say(order["id"], "release", "release-1", **word)
     web.http.delete(f"/v1/orders/{order['id']}", headers=web.key)
 
     problem_of(web.place("place-1"), "answer-deleted")
     headers = {**web.key, "Idempotency-Key": '"release-1"'}
-    again = web.http.post(f"/v1/orders/{order['id']}/release", json={"by": "Ada"}, headers=headers)
+    again = web.http.post(f"/v1/orders/{order['id']}/release", json=word, headers=headers)
 
     problem_of(again, "answer-deleted")
     told: Any = web.http.get("/v1/orders", headers=web.key).json

@@ -50,7 +50,9 @@ from tests.service.shop import (
     open_shop,
     placed,
     plan_of,
+    plan_seen,
     planned,
+    release_seen,
     taken,
 )
 
@@ -78,7 +80,7 @@ def story(parts: Parts, order_id: str) -> list[str]:
 def test_an_order_goes_from_received_over_ready_to_released(shop: Parts) -> None:
     order = placed(shop)
     plan = planned(shop, order.id)
-    released = release_order(shop.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more)
+    released = release_seen(shop, order.id)
 
     assert order.state == "received"
     assert released.state == "released"
@@ -114,9 +116,8 @@ def test_an_order_in_attention_is_released_only_with_a_reason(shop: Parts) -> No
     planned(shop, order.id)
 
     with pytest.raises(FindingsStandError, match="not good to cut"):
-        release_order(shop.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more)
-    release = Release(by="Ada", despite_findings="a test cut")
-    waiting = release_order(shop.store, SHOP, Seen(order_id=order.id), release, nothing_more)
+        release_seen(shop, order.id)
+    waiting = release_seen(shop, order.id, despite="a test cut")
     planned(shop, order.id)
     released = now_of(shop, order.id)
 
@@ -141,7 +142,7 @@ def test_an_order_may_be_released_without_a_person_where_nothing_stands(shop: Pa
 def test_planning_anew_after_release_supersedes_the_plan_and_leaves_it_as_it_was(shop: Parts) -> None:
     order = placed(shop)
     planned(shop, order.id)
-    first = release_order(shop.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more).plan
+    first = release_seen(shop, order.id).plan
     replan_order(shop.store, SHOP, Seen(order_id=order.id), {}, nothing_more)
     planned(shop, order.id)
     anew = now_of(shop, order.id)
@@ -236,7 +237,7 @@ def test_what_was_made_is_reported_of_a_released_order_alone(shop: Parts) -> Non
 
     with pytest.raises(StateForbidsError, match="the order is ready"):
         report_on_order(shop.store, SHOP, seen, "cut", {"count": 1}, nothing_more)
-    release_order(shop.store, SHOP, seen, Release(by="Ada"), nothing_more)
+    release_seen(shop, order.id)
     report_on_order(shop.store, SHOP, seen, "cut", {"count": 1}, nothing_more)
 
     with shop.store.reading() as session:
@@ -269,9 +270,10 @@ def test_a_customer_who_says_the_same_twice_has_said_it_once(shop: Parts) -> Non
 def test_nobody_decides_about_an_order_that_has_changed_meanwhile(shop: Parts) -> None:
     order = placed(shop)
     planned(shop, order.id)
+    release = Release(by="Ada", plan=plan_seen(shop, order.id))
 
     with pytest.raises(ChangedMeanwhileError, match="the order is at version 3, not 1"):
-        release_order(shop.store, SHOP, Seen(order_id=order.id, version=1), Release(by="Ada"), nothing_more)
+        release_order(shop.store, SHOP, Seen(order_id=order.id, version=1), release, nothing_more)
 
 
 @pytest.mark.parametrize("asker", [OTHER_SHOP, WEB_TESTS])
@@ -424,9 +426,9 @@ def _step(parts: Parts, order_id: str, step: str, held: taking.Taken | None) -> 
         case "hand back" if held is not None:
             taking.hand_back(parts.store, held)
         case "release":
-            release_order(parts.store, SHOP, seen, Release(by="Ada"), nothing_more)
+            release_seen(parts, order_id)
         case "despite":
-            release_order(parts.store, SHOP, seen, Release(by="Ada", despite_findings="why not"), nothing_more)
+            release_seen(parts, order_id, despite="why not")
         case "replan":
             replan_order(parts.store, SHOP, seen, {}, nothing_more)
         case "cancel" | "recall":
@@ -438,7 +440,7 @@ def _step(parts: Parts, order_id: str, step: str, held: taking.Taken | None) -> 
 def test_the_message_that_a_plan_is_superseded_tells_the_order_as_it_is_then(shop: Parts) -> None:
     order = placed(shop)
     planned(shop, order.id)
-    release_order(shop.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more)
+    release_seen(shop, order.id)
     with shop.store.writing() as session:
         wish = HookWish(url="https://shop.example/told", types=("order.superseded",), for_all_orders=True)
         holder = Holder(owner_id=WEB_SHOP.owner_id, is_test=False)
@@ -471,7 +473,7 @@ def test_a_file_that_comes_to_be_held_while_it_is_swept_stays(shop: Parts, monke
 def test_what_was_made_for_tests_is_repeated_for_tests_alone(shop: Parts) -> None:
     first = placed(shop, asker=WEB_TESTS)
     planned(shop, first.id)
-    release_order(shop.store, WEB_TESTS, Seen(order_id=first.id), Release(by="Ada"), nothing_more)
+    release_seen(shop, first.id, WEB_TESTS)
 
     with pytest.raises(StateForbidsError, match="what is made for tests never reaches the shop"):
         repeat_order(shop.store, WEB_SHOP, AskedRepeat(repeat_of=first.id), nothing_more)

@@ -8,7 +8,7 @@ from sqlalchemy import func, select, update
 
 from service.orders import retention
 from service.orders.asked import AskedRepeat
-from service.orders.deciding import Release, Seen, release_order, replan_order
+from service.orders.deciding import Seen, replan_order
 from service.orders.faults import StateForbidsError
 from service.orders.finding import find_order
 from service.orders.placing import nothing_more
@@ -18,7 +18,7 @@ from service.orders.views import OrderView
 from service.parts import Parts
 from service.settings import RetentionSettings
 from service.store.tables import Delivery, Event, Hook, KeptAnswer, Order
-from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, keeper_of, open_shop, placed, planned
+from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, keeper_of, open_shop, placed, planned, release_seen
 
 TIMES = RetentionSettings(tunes_days=10, drawings_days=100, deliveries_days=5, answers_days=7)
 
@@ -34,7 +34,7 @@ def released(parts: Parts, *, days_ago: float, asker: Any = WEB_SHOP) -> OrderVi
     """An order that was released so many days ago."""
     order = placed(parts, asker=asker)
     planned(parts, order.id)
-    release_order(parts.store, SHOP, Seen(order_id=order.id), Release(by="Ada"), nothing_more)
+    release_seen(parts, order.id)
     with parts.store.writing() as session:
         then = parts.store.now(session) - timedelta(days=days_ago)
         session.execute(update(Order).where(Order.id == order.id).values(finished_at=then))
