@@ -16,6 +16,7 @@ from service.orders.finding import order_row
 from service.orders.placing import Also
 from service.orders.states import EventType, State
 from service.orders.views import OrderView, PlanView, order_view, plan_view
+from service.store.holds import Hold, hold
 from service.store.store import Store
 from service.store.tables import Event, Order, Plan
 
@@ -25,6 +26,7 @@ REPORTS = {
     "scrapped": EventType.SCRAPPED,
     "measured": EventType.MEASURED,
 }
+DOCUMENTS = frozenset({"movement_digest", "settings_digest"})  # columns that name what is asked for anew
 VERDICTS = {"accepted": EventType.ACCEPTED, "declined": EventType.DECLINED}
 
 
@@ -104,7 +106,7 @@ def replan_order(store: Store, asker: Asker, seen: Seen, columns: Mapping[str, A
         store: The database.
         asker: Who asks.
         seen: Which order.
-        columns: What is asked for anew, such as the settings' digest, already kept and held.
+        columns: What is asked for anew, as `columns_of` gives it; its documents are held with the change or not at all.
         also: What is written in the same transaction.
 
     Raises:
@@ -121,6 +123,8 @@ def replan_order(store: Store, asker: Asker, seen: Seen, columns: Mapping[str, A
         cleared = {"reason": None, "despite_findings": None, "despite_by": None, "killed": 0}
         # The order's row first, the counter of events after it, as everywhere: else two decisions lock each other.
         _change(session, order, State.RECEIVED, now, {**cleared, **columns})
+        for name in DOCUMENTS & columns.keys():
+            hold(session, Hold(digest=columns[name], owner_id=order.owner_id, holder_id=order.id, what="document"))
         if state is State.RELEASED:
             plan = _plan(session, order)
             plan.superseded_at = now

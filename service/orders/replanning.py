@@ -10,7 +10,7 @@ from service.computation import check_tune
 from service.orders.faults import InputRefusedError, StateForbidsError
 from service.orders.finding import order_row
 from service.store.documents import document_in_force
-from service.store.holds import FileKeeper, Hold, hold
+from service.store.holds import FileKeeper
 from service.store.store import Store
 
 
@@ -30,7 +30,7 @@ class AskedAnew:
 
 
 def columns_of(store: Store, keeper: FileKeeper, asker: Asker, order_id: str, anew: AskedAnew) -> Mapping[str, Any]:
-    """The columns of the order that change, their documents kept and held.
+    """The columns of the order that change, their documents kept; `replan_order` holds them when it changes the order.
 
     Raises:
         OrderUnknownError: There is no such order for the asker.
@@ -58,9 +58,6 @@ def columns_of(store: Store, keeper: FileKeeper, asker: Asker, order_id: str, an
     }
     given = {name: text for name, text in texts.items() if text is not None}
     digests = dict(zip(given, keeper.keep(list(given.values())), strict=True))
-    with store.writing() as session:
-        for digest in digests.values():
-            hold(session, Hold(digest=digest, owner_id=owner_id, holder_id=order_id, what="document"))
     columns: dict[str, Any] = dict(digests)
     if movement is not None:
         columns["movement_revision"] = movement.revision

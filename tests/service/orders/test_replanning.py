@@ -1,0 +1,66 @@
+"""Planning anew: what is asked for is held by the order that was changed for it, and by nothing else."""
+
+import pytest
+from sqlalchemy import select
+from sqlalchemy.orm import Session
+
+from service.orders.deciding import Seen, replan_order
+from service.orders.faults import ChangedMeanwhileError, StateForbidsError
+from service.orders.placing import Also, nothing_more
+from service.orders.replanning import AskedAnew, columns_of
+from service.orders.views import OrderView
+from service.parts import Parts
+from service.store.tables import FileHold, Order
+from tests.service.shop import WEB_SHOP, keeper_of, open_shop, placed, plan_of, planned, taken
+
+ANEW = AskedAnew(settings=b'{"title": "For Ada"}')
+
+
+@pytest.fixture
+def shop(any_parts: Parts) -> Parts:
+    open_shop(any_parts)
+    return any_parts
+
+
+def held_for(parts: Parts, order_id: str) -> set[str]:
+    with parts.store.reading() as session:
+        return set(session.scalars(select(FileHold.digest).where(FileHold.holder_id == order_id)))
+
+
+def replanned(parts: Parts, order_id: str, *, version: int | None = None, also: Also = nothing_more) -> OrderView:
+    columns = columns_of(parts.store, keeper_of(parts), WEB_SHOP, order_id, ANEW)
+    return replan_order(parts.store, WEB_SHOP, Seen(order_id=order_id, version=version), columns, also)
+
+
+def test_what_is_asked_for_anew_is_held_and_planned(shop: Parts) -> None:
+    order_id = placed(shop).id
+    planned(shop, order_id)
+    before = held_for(shop, order_id)
+
+    replanned(shop, order_id)
+
+    with shop.store.reading() as session:
+        settings = session.get_one(Order, order_id).settings_digest
+    assert shop.files.read(settings) == ANEW.settings
+    assert held_for(shop, order_id) == before | {settings}
+    assert plan_of(shop, taken(shop, order_id)).told["title"] == "For Ada"
+
+
+def test_a_replan_that_is_refused_or_undone_leaves_nothing_held(shop: Parts) -> None:
+    order_id = placed(shop).id
+    planned(shop, order_id)
+    before = held_for(shop, order_id)
+
+    def fails(_session: Session, _order: OrderView) -> None:
+        raise ZeroDivisionError
+
+    with pytest.raises(ChangedMeanwhileError):
+        replanned(shop, order_id, version=1)
+    with pytest.raises(ZeroDivisionError):
+        replanned(shop, order_id, also=fails)
+    assert held_for(shop, order_id) == before
+
+    replan_order(shop.store, WEB_SHOP, Seen(order_id=order_id), {}, nothing_more)
+    with pytest.raises(StateForbidsError, match="the order is received"):
+        replanned(shop, order_id)
+    assert held_for(shop, order_id) == before
