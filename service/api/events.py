@@ -46,7 +46,7 @@ def event_routes(parts: Parts) -> Blueprint:
             with parts.store.reading() as session:
                 return events_after(session, asker, after=after, most=query.limit, test=query.test)
 
-        return _answer(request, query.after, more)
+        return _answer(request, asker, query.after, more)
 
     @routes.get("/orders/<order_id>/events")
     @describes(orders.ORDER_EVENTS)
@@ -60,21 +60,21 @@ def event_routes(parts: Parts) -> Blueprint:
             with parts.store.reading() as session:
                 return events_of(session, asker, order_id, after=after, most=query.limit)
 
-        return _answer(request, query.after, more)
+        return _answer(request, asker, query.after, more)
 
     return routes
 
 
-def _answer(asked: Request, after: int, more: More) -> Response:
+def _answer(asked: Request, asker: Asker, after: int, more: More) -> Response:
     wanted = asked.accept_mimetypes.best_match((JSON_MEDIA_TYPE, STREAM), default=JSON_MEDIA_TYPE)
     if wanted == JSON_MEDIA_TYPE:
         return json_response(events_told(more(after), after))
     last = asked.headers.get("Last-Event-ID", "")
     begin = int(last) if last.isascii() and last.isdigit() and len(last) <= MOST_DIGITS else after
     room, is_over = waiting_room(), stopping()
-    if room.enter():
+    if room.enter(asker.key_id):
         response = Response(_stream(begin, more, is_over), content_type=f"{STREAM}; charset=utf-8")
-        response.call_on_close(room.leave)
+        response.call_on_close(lambda: room.leave(asker.key_id))
     else:  # what there is; the client comes again after RETRY_MS
         response = Response(_stream(begin, more, lambda: True), content_type=f"{STREAM}; charset=utf-8")
     response.headers["Cache-Control"] = "no-store"

@@ -155,14 +155,14 @@ class _OrderDesk:
         order = self._looked_for(asker, order_id)
         if time.monotonic() >= until or not _is_worth_waiting(order, asked):
             return order, wait_s
-        if not room.enter():
+        if not room.enter(asker.key_id):
             return order, None
         try:
             while _is_worth_waiting(order, asked) and time.monotonic() < until and not is_stopping():
                 time.sleep(LOOKS_EVERY_S)
                 order = self._looked_for(asker, order_id)
         finally:
-            room.leave()
+            room.leave(asker.key_id)
         return order, wait_s
 
     def _looked_for(self, asker: Asker, order_id: str) -> OrderView:

@@ -557,7 +557,7 @@ def test_where_no_more_may_stream_a_stream_tells_what_there_is_and_ends(shop: Sh
 
     assert re.findall(r"^id: (.+)$", told, re.MULTILINE) == ["1", "2", "3"]
     assert told.startswith("retry: 2000")
-    assert shop.http.application.extensions[WAITING_ROOM].enter()  # a stream that was cut has left its place
+    assert shop.http.application.extensions[WAITING_ROOM].enter("any")  # a stream that was cut has left its place
 
 
 def test_events_are_asked_for_after_the_last_that_was_seen(shop: Shop) -> None:
