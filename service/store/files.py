@@ -61,9 +61,10 @@ class FileStore:
         self._faults: tuple[type[Exception], ...] = (OSError,) if self._is_folder else _faults_of_s3()
         self._files, root = fsspec.core.url_to_fs(url, **({} if self._is_folder else S3_OPTIONS))
         self._root = PurePosixPath(root)
+        self._on_disk: set[PurePosixPath] = set()  # folders of which this process knows that their names will last
         if self._is_folder:
             with self._told("the folder of files cannot be made"):
-                self._files.makedirs(str(self._root), exist_ok=True)
+                self._make_folder(self._root)
 
     def put(self, content: bytes) -> str:
         """Keep a file, and give its digest; one that is there already costs no writing."""
@@ -83,7 +84,7 @@ class FileStore:
             return
         part = f"{path}.{secrets.token_hex(8)}{PART}"
         folder = PurePosixPath(path).parent
-        self._files.makedirs(str(folder), exist_ok=True)
+        self._make_folder(folder)
         try:
             with open(part, "wb") as file:
                 file.write(content)
@@ -95,6 +96,21 @@ class FileStore:
             Path(part).unlink(missing_ok=True)
             raise
         _folder_to_disk(folder)
+
+    def _make_folder(self, folder: PurePosixPath) -> None:
+        """Make a folder, and those above it, so that their names outlive a loss of power.
+
+        One that is there already may have been made by another process a moment ago, which has not come so far yet.
+        """
+        if folder in self._on_disk:
+            return
+        new = [folder]
+        while not os.path.lexists(new[-1].parent):
+            new.append(new[-1].parent)
+        self._files.makedirs(str(folder), exist_ok=True)
+        for made in reversed(new):
+            _folder_to_disk(made.parent)
+        self._on_disk.update(new)
 
     def read(self, digest: str) -> bytes:
         """A file, whole.
@@ -231,7 +247,7 @@ class FileStore:
 
 
 def _folder_to_disk(folder: PurePosixPath) -> None:
-    """Have a folder's new name outlive a loss of power too."""
+    """Have the new names in a folder outlive a loss of power."""
     handle = os.open(folder, os.O_RDONLY)
     try:
         os.fsync(handle)

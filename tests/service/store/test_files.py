@@ -56,6 +56,51 @@ def test_a_file_let_go_is_gone_and_may_be_let_go_again(files: FileStore) -> None
     assert not files.has(digest)
 
 
+def synced_folders(monkeypatch: pytest.MonkeyPatch) -> list[str]:
+    """The folders that are written to disk from now on, in order."""
+    seen: list[str] = []
+
+    def seeing(handle: int, sync: Any = os.fsync) -> None:
+        place = os.readlink(f"/proc/self/fd/{handle}")
+        if os.path.isdir(place):
+            seen.append(place)
+        sync(handle)
+
+    monkeypatch.setattr("os.fsync", seeing)
+    return seen
+
+
+def test_the_name_of_a_new_folder_is_on_disk_before_a_file_in_it_is_kept(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    seen = synced_folders(monkeypatch)
+
+    files = FileStore(f"file://{tmp_path}/data/files")
+    made_with_it = list(seen)
+    seen.clear()
+    digest = files.put(b"a disc")
+    kept_in_it = list(seen)
+
+    assert made_with_it == [str(tmp_path), f"{tmp_path}/data"]  # which hold the names data and files
+    assert kept_in_it == [f"{tmp_path}/data/files", f"{tmp_path}/data/files/{digest[:2]}"]
+
+
+def test_a_folder_that_another_process_has_just_made_is_put_on_disk_too_and_only_once(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    mine, others = (FileStore(f"file://{tmp_path}/files") for _ in range(2))
+    digest = others.put(b"a disc")
+    others.remove(digest)
+    seen = synced_folders(monkeypatch)
+
+    for _ in range(2):
+        mine.put(b"a disc")
+        mine.remove(digest)
+
+    folder = f"{tmp_path}/files/{digest[:2]}"
+    assert seen == [f"{tmp_path}/files", folder, folder]
+
+
 @pytest.mark.parametrize(("number", "error"), [(errno.ENOSPC, StoreFullError), (errno.EIO, StoreBusyError)])
 def test_a_file_that_could_not_be_written_leaves_nothing_behind(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch, number: int, error: type[Exception]
@@ -117,8 +162,9 @@ def test_what_is_no_id_is_not_noted(files: FileStore, what: str) -> None:
 WRITES_SLOWLY = """
 import os, sys, time
 from service.store.files import FileStore
-os.fsync = lambda handle: (print("half-way", flush=True), time.sleep(60))
-FileStore(sys.argv[1]).put(b"x" * 1_000_000)
+files = FileStore(sys.argv[1])
+os.fsync = lambda handle: os.path.isdir(f"/proc/self/fd/{handle}") or (print("half-way", flush=True), time.sleep(60))
+files.put(b"x" * 1_000_000)
 """
 
 
