@@ -107,8 +107,9 @@ def test_a_file_that_could_not_be_written_leaves_nothing_behind(
 ) -> None:
     files = FileStore(f"file://{tmp_path}/files")
 
-    def fails(_handle: Any) -> None:
-        raise OSError(number, "no")
+    def fails(handle: int) -> None:
+        if not os.path.isdir(f"/proc/self/fd/{handle}"):
+            raise OSError(number, "no")
 
     monkeypatch.setattr("os.fsync", fails)
     with pytest.raises(error):
