@@ -23,6 +23,7 @@ from service.orders.kept_answers import (
     claim_or_answer,
     give_up,
     keep_answer,
+    renewed,
 )
 from service.orders.placing import nothing_more
 from service.parts import Parts
@@ -67,7 +68,8 @@ def once(
             )
         return _response(claim)
     try:
-        done = work(lambda session, view: keep_answer(session, claim, answer(view)))
+        with renewed(parts.store, claim):
+            done = work(lambda session, view: keep_answer(session, claim, answer(view)))
     except StillRunningError as fault:  # it took so long that another took its claim over; nothing was done
         raise _still_running(key) from fault
     except BaseException:
