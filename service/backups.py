@@ -1,9 +1,10 @@
-"""A backup of the service: a folder with the database, the files, the secret, and the notes of what was deleted.
+"""A backup of the service: a folder with the database, the files, the secret, and the notes of what was ended.
 
 The database is copied first and the files after it: what was taken in meanwhile is in the next backup, and what the
 copy names is there. PostgreSQL is dumped and loaded by its own programs; this module then sees to the rest.
 
-A restore reads the notes of both the backup and what stands now, and deletes again what was deleted since.
+A restore reads the notes of both the backup and what stands now, and ends again what was ended since: orders and hooks
+that were deleted, hooks that were turned off, and keys that were revoked.
 """
 
 import json
@@ -15,9 +16,11 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
-from sqlalchemy import make_url, select, update
+from sqlalchemy import make_url, select
 
 from layout.version import ENGINE_VERSION
+from service.access.revoking import note_revoked, revoke_again
+from service.hooks.stopping import note_all_stopped, stop_again
 from service.moments import moment_text, utc_now
 from service.orders.erasing import erase_again
 from service.orders.events import EVENTS
@@ -25,7 +28,7 @@ from service.parts import SECRET_FILE, Parts, open_parts
 from service.settings import ServiceSettings
 from service.store.files import FileLostError, FileStore
 from service.store.migrating import NEWEST
-from service.store.tables import Counter, FileHold, Key, StoredFile
+from service.store.tables import Counter, FileHold, StoredFile
 
 FORMAT = "discwright-backup/1"
 ABOUT_NAME, DATABASE_NAME, FILES_NAME = "backup.json", "database.sqlite", "files"
@@ -66,6 +69,7 @@ class Restored:
         file_count: Files brought back.
         erased_count: Orders that were deleted again.
         revoked_count: Keys that were revoked again.
+        stopped_count: Hooks that were deleted or turned off again.
         removed_count: Files removed that the restored database does not know.
         lost: Digests of files that the database names and neither the backup nor the store of files has.
     """
@@ -74,6 +78,7 @@ class Restored:
     file_count: int
     erased_count: int
     revoked_count: int
+    stopped_count: int
     removed_count: int
     lost: tuple[str, ...]
 
@@ -99,8 +104,10 @@ def back_up(parts: Parts, folder: Path) -> BackedUp:
             os.replace(copy, folder / DATABASE_NAME)
         for digest in there - wanted:  # what was deleted is deleted from the backup too
             kept.remove(digest)
-        for order_id in parts.files.noted():
-            kept.note(order_id)
+        note_revoked(parts.store, parts.files)
+        note_all_stopped(parts.store, parts.files)
+        for ended in parts.files.noted():
+            kept.note(ended)
         _copy_secret(parts.settings.places.data_directory, folder)
         about = {
             "format": FORMAT,
@@ -134,8 +141,8 @@ def restore(settings: ServiceSettings, folder: Path, *, may_replace: bool) -> Re
     with _told(folder):
         about = _about(folder)
         kept, files = FileStore(_files_url(folder)), FileStore(settings.files_url)
-        for order_id in kept.noted():  # first of all: whatever happens from here on, they are not forgotten
-            files.note(order_id)
+        for ended in kept.noted():  # first of all: whatever happens from here on, they are not forgotten
+            files.note(ended)
         before = _Before()
         target = make_url(settings.database_url)
         if target.get_backend_name() == "sqlite":
@@ -156,17 +163,16 @@ class _Before:
     """What the database that is overwritten knew: the last event's number, and keys that were revoked."""
 
     events: int | None = None
-    revoked: tuple[tuple[str, int], ...] = ()
+    revoked: tuple[str, ...] = ()
 
 
 def _completed(parts: Parts, kept: FileStore, before: _Before) -> Restored:
-    erased = erase_again(parts.store, list(parts.files.noted()))
+    noted = list(parts.files.noted())
+    erased = erase_again(parts.store, [one for one in noted if one.startswith("order_")])
     with parts.store.writing() as session:
-        revoked = 0
         now = parts.store.now(session)
-        for key_id, _ in before.revoked:
-            again = update(Key).where(Key.id == key_id, Key.revoked_at.is_(None)).values(revoked_at=now)
-            revoked += len(session.scalars(again.returning(Key.id)).all())
+        revoked = revoke_again(session, {*noted, *before.revoked}, now)
+        stopped = stop_again(session, noted, now)
         counted = session.get_one(Counter, EVENTS)
         counted.value = max(counted.value, before.events or 0) + (LEAP if before.events is None else 0)
     with parts.store.reading() as session:
@@ -182,6 +188,7 @@ def _completed(parts: Parts, kept: FileStore, before: _Before) -> Restored:
         file_count=len(held - there) - len(lost),
         erased_count=erased,
         revoked_count=revoked,
+        stopped_count=stopped,
         removed_count=len(unknown),
         lost=lost,
     )
@@ -223,8 +230,8 @@ def _before(target: Path) -> _Before:
         if not {"counters", "keys"} <= tables:
             return _Before()
         counted = database.execute("SELECT value FROM counters WHERE name = ?", (EVENTS,)).fetchone()
-        revoked = database.execute("SELECT id, revoked_at FROM keys WHERE revoked_at IS NOT NULL").fetchall()
-    return _Before(events=counted[0] if counted else None, revoked=tuple(revoked))
+        revoked = database.execute("SELECT id FROM keys WHERE revoked_at IS NOT NULL").fetchall()
+    return _Before(events=counted[0] if counted else None, revoked=tuple(key_id for [key_id] in revoked))
 
 
 def _copy_files(source: FileStore, target: FileStore, digests: set[str]) -> tuple[str, ...]:

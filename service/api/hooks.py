@@ -30,6 +30,7 @@ from service.hooks.keeping import (
     hooks_of,
     rotate_secret,
 )
+from service.hooks.stopping import note_stopped
 from service.hooks.types import MEANINGS
 from service.moments import utc_now
 from service.parts import Parts
@@ -109,6 +110,7 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
     def drop_hook(asker: Asker, hook_id: str) -> Response:
         with hook_problems(), store.writing() as session:
             delete_hook(session, _holder(asker), hook_id, now=clock())
+        note_stopped(store, parts.files, hook_id)
         return Response(status=204)
 
 
@@ -137,7 +139,9 @@ def _secrets_and_tests(routes: Blueprint, parts: Parts, clock: Callable[[], date
     @needs(Scope.ORDER)
     def turn_on(asker: Asker, hook_id: str) -> Response:
         with hook_problems(), store.writing() as session:
-            return json_response(hook_told(enable_hook(session, _holder(asker), hook_id, now=clock())))
+            hook = enable_hook(session, _holder(asker), hook_id, now=clock())
+        note_stopped(store, parts.files, hook_id)
+        return json_response(hook_told(hook))
 
 
 def _deliveries(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> None:

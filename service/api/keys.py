@@ -7,10 +7,11 @@ from flask import Blueprint, Response, request
 
 from layout.errors import DocumentError, Problem
 from service.access.asker import Asker
-from service.access.keys import KeyAsked, KeyTold, NewKey, key_of_id, list_keys, make_key, revoke_key
+from service.access.keys import KeyAsked, KeyTold, NewKey, key_of_id, list_keys, make_key
 from service.access.owners import OwnerTold, hold_access, owner_titled
 from service.access.scopes import Scope, in_order
 from service.access.telling import key_told
+from service.access.revoking import revoke_for_good
 from service.api.answers import json_response
 from service.api.asking import browser_or_none, needs, needs_any_key
 from service.api.describing import describes
@@ -76,7 +77,7 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
     @describes(keys.REVOKE)
     @needs(Scope.ADMIN)
     def revoke(asker: Asker, key_id: str) -> Response:
-        _found(revoke_key(store, key_id, clock(), owner_id=_seen_by(asker)), key_id)
+        _found(revoke_for_good(store, parts.files, key_id, clock(), owner_id=_seen_by(asker)), key_id)
         return Response(status=204)
 
     return routes

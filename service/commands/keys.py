@@ -7,18 +7,18 @@ from contextlib import contextmanager
 from datetime import datetime, timedelta
 
 from service.access.first_start import FirstKey
-from service.access.keys import KeyAsked, KeyTold, list_keys, make_key, revoke_key
+from service.access.keys import KeyAsked, KeyTold, list_keys, make_key
 from service.access.owners import TitleError, checked_title, hold_access, owner_titled, the_shop
+from service.access.revoking import revoke_for_good
 from service.access.scopes import MEANINGS, Scope, ScopeError, scopes_of
 from service.access.telling import key_told
 from service.commands.arguments import OneLineParser, Tools, add_json
 from service.commands.errors import GOOD, CommandError
 from service.commands.output import aligned, say, say_json
 from service.moments import utc_now
-from service.parts import open_parts
+from service.parts import Parts, open_parts
 from service.settings import SettingsError, settings_from
 from service.store.faults import StoreError
-from service.store.store import Store
 
 ABOUT = "Make, list and revoke the keys with which programs ask the service."
 EXAMPLE = f"""example:
@@ -69,8 +69,8 @@ def run(asked: argparse.Namespace, _: Tools) -> int:
     Raises:
         CommandError: There is no such key or owner, or the database cannot be used.
     """
-    with _opened() as store:
-        code: int = asked.act(asked, store, utc_now())
+    with _opened() as parts:
+        code: int = asked.act(asked, parts, utc_now())
     return code
 
 
@@ -90,9 +90,9 @@ def first_key_lines(first: FirstKey, address: str) -> list[str]:
     ]
 
 
-def _add(asked: argparse.Namespace, store: Store, now: datetime) -> int:
+def _add(asked: argparse.Namespace, parts: Parts, now: datetime) -> int:
     wanted = KeyAsked(title=asked.title, scopes=asked.scopes, is_test=asked.test)
-    with store.writing() as session:
+    with parts.store.writing() as session:
         hold_access(session)
         owner = the_shop(session, now) if asked.owner is None else owner_titled(session, asked.owner, now)
         made = make_key(session, owner, wanted, now)
@@ -110,8 +110,8 @@ def _add(asked: argparse.Namespace, store: Store, now: datetime) -> int:
     return GOOD
 
 
-def _list(asked: argparse.Namespace, store: Store, now: datetime) -> int:
-    keys = [key for key in list_keys(store) if asked.owner in (None, key.owner.title)]
+def _list(asked: argparse.Namespace, parts: Parts, now: datetime) -> int:
+    keys = [key for key in list_keys(parts.store) if asked.owner in (None, key.owner.title)]
     if asked.json:
         say_json([key_told(key) for key in keys])
     elif keys:
@@ -122,8 +122,8 @@ def _list(asked: argparse.Namespace, store: Store, now: datetime) -> int:
     return GOOD
 
 
-def _revoke(asked: argparse.Namespace, store: Store, now: datetime) -> int:
-    key = revoke_key(store, asked.key, now)
+def _revoke(asked: argparse.Namespace, parts: Parts, now: datetime) -> int:
+    key = revoke_for_good(parts.store, parts.files, asked.key, now)
     if key is None:
         raise CommandError(f"there is no key {asked.key!r}; `discwright keys list` shows those there are")
     if asked.json:
@@ -147,13 +147,13 @@ def _ago(at: datetime | None, now: datetime) -> str:
 
 
 @contextmanager
-def _opened() -> Iterator[Store]:
+def _opened() -> Iterator[Parts]:
     try:
         parts = open_parts(settings_from(os.environ))
     except (SettingsError, StoreError) as fault:
         raise CommandError(str(fault)) from fault
     try:
-        yield parts.store
+        yield parts
     except StoreError as fault:
         raise CommandError(str(fault)) from fault
     finally:

@@ -1,4 +1,4 @@
-"""`discwright restore`: a backup brought back, and deleted again what was deleted since it was made."""
+"""`discwright restore`: a backup brought back, and ended again what was ended since it was made."""
 
 import argparse
 import os
@@ -12,16 +12,16 @@ from service.commands.output import say
 from service.settings import SettingsError, settings_from
 from service.store.faults import StoreError
 
-ABOUT = "Bring a backup back; what was deleted since it was made is deleted again."
+ABOUT = "Bring a backup back; what was deleted or revoked since it was made is so again."
 EXAMPLE = """example:
   discwright restore /backups/discs
 
 Stop the service first. On PostgreSQL load the dump before:
   pg_restore --clean --if-exists --no-owner --dbname="$DATABASE_URL" /backups/discs/database.dump
 
-Deletions are noted beside the files, in the store of files: where that is lost too, those since the backup are not
-known. Keys revoked since are revoked again where the database that is overwritten still shows them; else look
-through `discwright keys list`. Events go on with higher numbers than before, so that readers miss none."""
+Deleted orders and hooks, hooks turned off and revoked keys are noted beside the files, in the store of files: where
+that is lost too, those since the backup are not known; look through `discwright keys list`. Browsers sign in anew. Events
+go on with higher numbers than before, so that readers miss none."""
 
 
 def add_arguments(parser: OneLineParser) -> None:
@@ -45,7 +45,7 @@ def run(asked: argparse.Namespace, _: Tools) -> int:
         [
             f"restored {'the database and ' if back.has_database else ''}{back.file_count} files from {where}",
             f"deleted again: {back.erased_count} orders; revoked again: {back.revoked_count} keys; "
-            f"removed: {back.removed_count} files made since",
+            f"stopped again: {back.stopped_count} hooks; removed: {back.removed_count} files made since",
         ]
     )
     if back.lost:

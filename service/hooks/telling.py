@@ -9,19 +9,16 @@ import threading
 import time
 from collections import Counter
 from datetime import datetime
+from http import HTTPStatus
 
 from service.hooks.deliveries import due
-from service.hooks.sending import Taken, Ways, lease_of, send, take
+from service.hooks.sending import Result, Taken, Ways, lease_of, send, take
+from service.hooks.stopping import note_stopped
+from service.limits import HOOK_LIMITS
 from service.parts import Parts
 from service.store.faults import StoreError
 
 log = logging.getLogger("discwright")
-
-LOOK_EVERY_S = 1.0  # s; how late a message may be
-MOST_AT_A_TIME = 32  # messages of one process: each waits for others most of its time
-MOST_PER_HOOK = 4  # of them to one hook
-MOST_PER_LATE_HOOK = 1  # to one that did not take its last message: it may hang, and shall hold up no others
-STOP_SHARE = 0.5  # of the time to stop, for what is being sent; after it the lease lets another send it
 
 
 def tell_hooks(parts: Parts, stop: threading.Event, *, ways: Ways | None = None) -> None:
@@ -38,12 +35,12 @@ def tell_hooks(parts: Parts, stop: threading.Event, *, ways: Ways | None = None)
             sender.send_due()
         except StoreError as fault:
             log.warning("hooks are not told at the moment: %s", fault)
-            stop.wait(LOOK_EVERY_S)
+            stop.wait(HOOK_LIMITS.look_every_s)
         except Exception:
             log.exception("looking for messages to hooks failed; it is tried again")
-            stop.wait(LOOK_EVERY_S)
-        sender.wait_for_change(LOOK_EVERY_S)
-    sender.finish(parts.settings.work.stop_within_s * STOP_SHARE)
+            stop.wait(HOOK_LIMITS.look_every_s)
+        sender.wait_for_change(HOOK_LIMITS.look_every_s)
+    sender.finish(parts.settings.work.stop_within_s * HOOK_LIMITS.stop_percent / 100)
 
 
 def deliver_due(parts: Parts, now: datetime, *, ways: Ways | None = None) -> int:
@@ -61,15 +58,26 @@ def deliver_due(parts: Parts, now: datetime, *, ways: Ways | None = None) -> int
     tries = 0
     while True:
         with parts.store.reading() as session:
-            ids = due(session, now=now, room={}, usual=MOST_PER_HOOK, most=MOST_AT_A_TIME)
+            ids = due(session, now=now, room={}, usual=HOOK_LIMITS.per_hook_at_a_time, most=HOOK_LIMITS.at_a_time)
         if not ids:
             return tries
         for delivery_id in ids:
             with parts.store.writing() as session:
                 taken = take(session, delivery_id, now=now, lease=lease_of(parts))
             if taken is not None:
-                send(parts, taken, ways)
+                _sent(parts, taken, ways)
                 tries += 1
+
+
+def _sent(parts: Parts, taken: Taken, ways: Ways) -> Result:
+    """Send a message; a hook that asked for none any more is noted, so that no restore turns it on again."""
+    result = send(parts, taken, ways)
+    if result.answer is not None and result.answer.status == HTTPStatus.GONE:
+        try:
+            note_stopped(parts.store, parts.files, taken.hook_id)
+        except StoreError as fault:
+            log.warning("it is noted with the next backup alone that hook %s is off: %s", taken.hook_id, fault)
+    return result
 
 
 class _Sender:
@@ -92,14 +100,14 @@ class _Sender:
         """
         self._changed.clear()
         with self._lock:
-            free = MOST_AT_A_TIME - self._sending.total()
+            free = HOOK_LIMITS.at_a_time - self._sending.total()
             room = {hook: self._most(hook) - self._sending[hook] for hook in {*self._sending, *self._late}}
         if free <= 0:
             return
         store = self._parts.store
         with store.reading() as session:
             now = store.now(session)
-            ids = due(session, now=now, room=room, usual=MOST_PER_HOOK, most=free)
+            ids = due(session, now=now, room=room, usual=HOOK_LIMITS.per_hook_at_a_time, most=free)
         if not ids:
             return
         with store.writing() as session:
@@ -121,7 +129,7 @@ class _Sender:
             thread.join(max(0.0, until - time.monotonic()))
 
     def _most(self, hook_id: str) -> int:
-        return MOST_PER_LATE_HOOK if hook_id in self._late else MOST_PER_HOOK
+        return HOOK_LIMITS.per_late_hook_at_a_time if hook_id in self._late else HOOK_LIMITS.per_hook_at_a_time
 
     def _start(self, taken: Taken) -> None:
         # A daemon: a hook that hangs must not keep the process from ending.
@@ -134,7 +142,7 @@ class _Sender:
     def _send(self, taken: Taken) -> None:
         is_late = True
         try:
-            is_late = not send(self._parts, taken, self._ways).is_success
+            is_late = not _sent(self._parts, taken, self._ways).is_success
         except StoreError as fault:
             log.warning("what came of %s could not be written, so it will be sent again: %s", taken.id, fault)
         except Exception:

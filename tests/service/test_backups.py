@@ -7,14 +7,23 @@ import threading
 from collections.abc import Iterator
 from contextlib import closing
 from dataclasses import dataclass
+from datetime import timedelta
 from importlib.util import find_spec
 from pathlib import Path
 
 import pytest
 from sqlalchemy import select, text, update
 
+from service.access.browsers import find_browser, make_link, sign_in_by_link, sign_out
+from service.access.keys import revoke_key
+from service.access.revoking import revoke_for_good
+from service.access.scopes import Scope
 from service.backups import ABOUT_NAME, DATABASE_NAME, LEAP, BackupError, back_up, restore
 from service.commands.main import main
+from service.hooks.deliveries import Holder
+from service.hooks.keeping import HookWish, add_hook, delete_hook, enable_hook
+from service.hooks.stopping import note_stopped
+from service.moments import utc_now
 from service.orders.deciding import Seen, cancel_order
 from service.orders.erasing import erase_order
 from service.orders.finding import find_order
@@ -23,7 +32,8 @@ from service.orders.views import OrderView
 from service.parts import Parts, open_parts
 from service.settings import ServiceSettings, settings_from
 from service.store.store import Store
-from service.store.tables import Event, FileHold, Key, Order
+from service.store.tables import Delivery, Event, FileHold, Hook, Key, Order
+from tests.service.api.guarded import new_key
 from tests.service.conftest import environment_of, new_database, parts_of
 from tests.service.shop import OTHER_SHOP, SHOP, TUNE, WEB_SHOP, keeper_of, open_shop, placed, planned, release_seen
 
@@ -184,6 +194,68 @@ def test_the_backup_of_a_busy_shop_is_whole(shop: Shop) -> None:
     assert shop.restored.lost == ()
 
 
+def test_a_key_revoked_since_the_backup_stays_revoked(shop: Shop) -> None:
+    key_id = new_key(shop.parts, Scope.READ).told.id
+    shop.back_up()
+    revoke_for_good(shop.parts.store, shop.parts.files, key_id, utc_now())
+
+    shop.restore()
+
+    with shop.parts.store.reading() as session:
+        revoked = session.scalars(select(Key.id).where(Key.revoked_at.is_not(None))).all()
+    assert (shop.restored.revoked_count, revoked) == (1, [key_id])
+
+
+def test_browsers_signed_out_and_links_used_up_since_the_backup_open_nothing(shop: Shop) -> None:
+    store, now, lasts = shop.parts.store, utc_now(), timedelta(days=1)
+    with store.writing() as session:
+        link, unused = (make_link(session, "key_web", now) for _ in range(2))
+    browser = sign_in_by_link(store, unused, now, lasts)
+    assert browser is not None
+    shop.back_up()
+    assert sign_in_by_link(store, link, now, lasts) is not None
+    sign_out(store, browser.secret)
+
+    shop.restore()
+
+    assert sign_in_by_link(shop.parts.store, link, now, lasts) is None
+    assert find_browser(shop.parts.store, browser.secret, now) is None
+
+
+def test_hooks_deleted_or_turned_off_since_the_backup_are_told_nothing(shop: Shop) -> None:
+    holder, now = Holder(owner_id=WEB_SHOP.owner_id, is_test=False), utc_now()
+    names = ("deleted", "off", "off and on", "on")
+    with shop.parts.store.writing() as session:
+        wishes = [HookWish(url=f"https://{number}.example/", types=None, for_all_orders=True) for number in range(4)]
+        ids = [add_hook(session, holder, wish, now=now).hook.id for wish in wishes]
+    placed(shop.parts)
+    shop.back_up()
+    with shop.parts.store.writing() as session:
+        delete_hook(session, holder, ids[0], now=now)
+        session.execute(update(Hook).where(Hook.id.in_(ids[1:3])).values(disabled_at=now, disabled_because="said so"))
+    for hook_id in ids[:3]:
+        note_stopped(shop.parts.store, shop.parts.files, hook_id)
+    with shop.parts.store.writing() as session:
+        enable_hook(session, holder, ids[2], now=now)
+    note_stopped(shop.parts.store, shop.parts.files, ids[2])
+
+    shop.restore()
+
+    with shop.parts.store.reading() as session:
+        rows = [session.get_one(Hook, hook_id) for hook_id in ids]
+        states = {row.hook_id: row.state for row in session.scalars(select(Delivery))}
+    stopped = [(row.deleted_at is not None, row.disabled_at is not None) for row in rows]
+    assert dict(zip(names, stopped, strict=True)) == {
+        "deleted": (True, False),
+        "off": (False, True),
+        "off and on": (False, False),
+        "on": (False, False),
+    }
+    assert (rows[0].url, rows[0].secrets) == ("", {"current": "", "before": []})
+    assert [states[hook_id] for hook_id in ids] == ["failed", "failed", "waiting", "waiting"]
+    assert shop.restored.stopped_count == 2
+
+
 # What stands below is about files and about SQLite, whose database the command copies itself.
 
 
@@ -234,16 +306,30 @@ def test_a_backup_is_restored_on_a_new_machine(small: Shop, tmp_path: Path) -> N
     parts.store.close()
 
 
-def test_a_key_revoked_since_the_backup_stays_revoked(small: Shop) -> None:
+def test_on_a_new_machine_with_the_old_store_of_files_what_was_ended_stays_ended(small: Shop, tmp_path: Path) -> None:
+    key_id = new_key(small.parts, Scope.READ).told.id
     small.back_up()
+    revoke_for_good(small.parts.store, small.parts.files, key_id, utc_now())
+    files = {"DISCWRIGHT_FILES": small.settings.files_url}
+
+    restored = restore(settings_from(environment_of(tmp_path / "new") | files), small.folder, may_replace=False)
+
+    assert restored.revoked_count == 1
+
+
+def test_a_backup_notes_what_was_ended_without_a_note(small: Shop) -> None:
+    now = utc_now()
     with small.parts.store.writing() as session:
-        session.execute(update(Key).where(Key.id == "key_web").values(revoked_at=small.parts.store.now(session)))
+        holder, wish = Holder(owner_id=WEB_SHOP.owner_id, is_test=False), "https://a.example/"
+        hook = add_hook(session, holder, HookWish(url=wish, types=None, for_all_orders=True), now=now).hook
+        delete_hook(session, holder, hook.id, now=now)
+    key_id = new_key(small.parts, Scope.READ).told.id
+    revoke_key(small.parts.store, key_id, now)
+    assert list(small.parts.files.noted()) == []
 
-    small.restore()
+    small.back_up()
 
-    with small.parts.store.reading() as session:
-        revoked = session.scalars(select(Key.id).where(Key.revoked_at.is_not(None))).all()
-    assert (small.restored.revoked_count, revoked) == (1, ["key_web"])
+    assert set(small.parts.files.noted()) == {key_id, hook.id}
 
 
 def test_nobody_else_may_read_a_backup(small: Shop) -> None:
