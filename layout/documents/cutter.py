@@ -180,16 +180,6 @@ class Cutter(Part):
     tolerance_class: ToleranceClass | None = None
     press: Press | None = None
 
-    @model_validator(mode="before")
-    @classmethod
-    def _shows_the_upper_face(cls, value: object) -> object:
-        """The side drawn where none is stated, by the way the press forms: tabs stand on the star side."""
-        press = value.get("press") if isinstance(value, Mapping) else None
-        if not isinstance(value, Mapping) or not isinstance(press, Mapping) or "drawn_from" in value:
-            return value
-        side = {"up": "star-side", "down": "label-side"}.get(str(press.get("forms")))
-        return value if side is None else {**value, "drawn_from": side}
-
     @model_validator(mode="after")
     def _parts_of_its_kind(self) -> Self:
         if self.kind == "punch-press" and self.fold is not None:
@@ -226,4 +216,13 @@ def read_cutter(text: str | bytes) -> Cutter:
         DocumentError: Not JSON, or not a valid cutter; names every fault found.
     """
     plain, _ = read_json(text, document="cutter")
-    return check_document(Cutter, plain, document="cutter")
+    return check_document(Cutter, _showing_the_upper_face(plain), document="cutter")
+
+
+def _showing_the_upper_face(value: object) -> object:
+    """With the side drawn where none is stated, by the way the press forms: tabs stand on the star side."""
+    press = value.get("press") if isinstance(value, Mapping) else None
+    if not isinstance(value, Mapping) or not isinstance(press, Mapping) or "drawn_from" in value:
+        return value
+    side = {"up": "star-side", "down": "label-side"}.get(str(press.get("forms")))
+    return value if side is None else {**value, "drawn_from": side}

@@ -18,6 +18,7 @@ from layout.errors import DocumentError, Problem
 
 MOST_LEVELS = 12  # lists and objects in each other; the deepest document has five
 MOST_DIGITS = 400  # of a whole number: more than the greatest a double holds
+MOST_WHOLE = 2**53  # whole numbers below it are doubles, each its own (RFC 8259 section 6)
 MOST_SHOWN = 120  # characters of a value that a message shows: as many as the longest title has
 _HALF_CHARACTER = re.compile("[\ud800-\udfff]")
 _TOO_DEEP = f"lists and objects are nested more than {MOST_LEVELS} deep; a document needs fewer"
@@ -253,10 +254,30 @@ def check_document(
         message = f"a JSON object is needed, got {_named(value)}"
         raise DocumentError(document=document, problems=(Problem(pointer="", message=message),))
     try:
-        return model.model_validate(value)
+        return model.model_validate_json(json.dumps(_with_whole_numbers(value)), strict=True)
     except ValidationError as error:
         problems = tuple(_problem(fault, union_tags) for fault in error.errors(include_url=False))
         raise DocumentError(document=document, problems=problems) from error
+
+
+def _with_whole_numbers(value: Json) -> Json:
+    """The value with 1 where it says 1.0: JSON Schema calls both an integer, and pydantic the first alone."""
+    if isinstance(value, float) and value and value.is_integer() and abs(value) < MOST_WHOLE:
+        return int(value)
+    if isinstance(value, Mapping):
+        return {name: _with_whole_numbers(part) for name, part in value.items()}
+    return [_with_whole_numbers(part) for part in value] if isinstance(value, list) else value
+
+
+# What a fault of a kind needs, where pydantic would speak of its own types.
+NEEDED = {
+    **dict.fromkeys(("int_type", "int_from_float", "int_parsing"), "a whole number is needed"),
+    **dict.fromkeys(("float_type", "float_parsing"), "a number is needed"),
+    **dict.fromkeys(("bool_type", "bool_parsing"), "true or false is needed"),
+    "string_type": "text is needed",
+    **dict.fromkeys(("list_type", "tuple_type"), "a list is needed"),
+    **dict.fromkeys(("dict_type", "model_type"), "a JSON object is needed"),
+}
 
 
 def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
@@ -267,6 +288,8 @@ def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
         return Problem(pointer=place, message="this field is needed")
     message = fault["msg"].removeprefix("Value error, ")
     seen = fault.get("input")
+    if fault["type"] in NEEDED:
+        return Problem(pointer=place, message=f"{NEEDED[fault['type']]}, got {_named(seen)}")
     if isinstance(seen, str | int | float) and "got" not in message and fault["type"] != "value_error":
         message = f"{message}, got {_shortened(repr(seen))}"
     return Problem(pointer=place, message=message)

@@ -8,6 +8,7 @@ from pydantic.json_schema import GenerateJsonSchema, JsonSchemaMode, models_json
 
 from layout.documents import Cutter, Movement, Settings
 from layout.documents.sheets import SheetJob
+from service.api.models.documents import DESCRIBED_BY
 
 PLACE = "#/components/schemas/"
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
@@ -18,6 +19,7 @@ DOCUMENTS: Mapping[str, type[BaseModel]] = {
     "settings": Settings,
     "sheet-job": SheetJob,
 }
+NO_NUL = "^[^\\u0000]*$"
 Use = Literal["asked", "told"]
 Schema = dict[str, Any]
 
@@ -46,12 +48,13 @@ class Schemas:
         )
         named: dict[str, Schema] = made.get("$defs", {})
         self._references = {key: dict(value) for key, value in references.items()}
-        strict = _reached(
+        asked = _reached(
             [self._references[mode] for (_, use), mode in zip(wanted, modes, strict=True) if use == "asked"], named
         )
-        strict |= _reached([self._references[mode] for mode in modes if mode[0] in DOCUMENTS.values()], named)
+        documents = _reached([self._references[mode] for mode in modes if mode[0] in DOCUMENTS.values()], named)
         names = _plain_names(named)
-        told = {name: schema if name in strict else _open(schema) for name, schema in named.items()}
+        told = {name: schema if name in asked | documents else _open(schema) for name, schema in named.items()}
+        told |= {name: _without_nul(named[name]) for name in asked - documents}
         self.named: dict[str, Schema] = {
             names[name]: _renamed(_neat(schema), names) for name, schema in sorted(told.items())
         }
@@ -110,6 +113,9 @@ def _plain_names(named: Mapping[str, Schema]) -> dict[str, str]:
 
 def _renamed(value: Any, names: Mapping[str, str]) -> Any:
     if isinstance(value, dict):
+        if DESCRIBED_BY in value:
+            others = {key: part for key, part in value.items() if key != DESCRIBED_BY}
+            return {"$ref": f"{PLACE}{value[DESCRIBED_BY]}", **others}
         return {
             key: f"{PLACE}{names[part.removeprefix(PLACE)]}"
             if key == "$ref" and isinstance(part, str)
@@ -120,8 +126,26 @@ def _renamed(value: Any, names: Mapping[str, str]) -> Any:
 
 
 def _open(schema: Schema) -> Schema:
-    """The schema of an answer: members that are not known yet may come, and are to be ignored."""
-    return {key: value for key, value in schema.items() if (key, value) != ("additionalProperties", False)}
+    """The schema of an answer: members that are not known yet may come, and are to be ignored.
+
+    What may be left out is left out where it does not apply; it has no value then that could be taken for it.
+    """
+    opened = {key: value for key, value in schema.items() if (key, value) != ("additionalProperties", False)}
+    properties = schema.get("properties")
+    if properties is not None:
+        opened["properties"] = {
+            name: {key: value for key, value in said.items() if key != "default"} for name, said in properties.items()
+        }
+    return opened
+
+
+def _without_nul(value: Any) -> Any:
+    """The schema of a request: no text of it holds NUL, see `request_models`."""
+    if isinstance(value, dict):
+        made = {key: _without_nul(part) for key, part in value.items()}
+        is_free = value.get("type") == "string" and not {"pattern", "enum", "const", "format"} & value.keys()
+        return {**made, "pattern": NO_NUL} if is_free else made
+    return [_without_nul(part) for part in value] if isinstance(value, list) else value
 
 
 def _neat(value: Any) -> Any:

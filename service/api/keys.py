@@ -4,14 +4,16 @@ from collections.abc import Callable
 from datetime import datetime
 
 from flask import Blueprint, Response, request
+from flask.sansio.blueprints import BlueprintSetupState
+from werkzeug.routing import BaseConverter
 
 from layout.errors import DocumentError, Problem
 from service.access.asker import Asker
 from service.access.keys import KeyAsked, KeyTold, NewKey, key_of_id, list_keys, make_key
 from service.access.owners import OwnerTold, hold_access, owner_titled
+from service.access.revoking import revoke_for_good
 from service.access.scopes import Scope, in_order
 from service.access.telling import key_told
-from service.access.revoking import revoke_for_good
 from service.api.answers import json_response
 from service.api.asking import browser_or_none, needs, needs_any_key
 from service.api.describing import describes
@@ -25,6 +27,16 @@ from service.parts import Parts
 MOST_BODY_BYTES = 10_000  # bytes; the longest titles in escapes of JSON, and every scope, take 5,000
 
 
+class _IdOfKey(BaseConverter):
+    """An id of a key in a path. "me" is none: it can be read, and whoever would revoke it is told so (405)."""
+
+    regex = "(?!me$)[^/]+"
+
+
+def _know_ids(setup: BlueprintSetupState) -> None:
+    setup.app.url_map.converters["key"] = _IdOfKey
+
+
 def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blueprint:
     """The routes of keys.
 
@@ -33,6 +45,7 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
         clock: The moment, in UTC.
     """
     routes = Blueprint("keys", __name__, url_prefix="/v1/keys")
+    routes.record(_know_ids)
     store = parts.store
 
     @routes.get("")
@@ -65,7 +78,7 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
         own = _found(key_of_id(store, asker.key_id), asker.key_id)
         return json_response({**key_told(own), "csrf_token": browser.csrf_token if browser else None})
 
-    @routes.get("/<key_id>")
+    @routes.get("/<key:key_id>")
     @describes(keys.TELL)
     @needs(Scope.ADMIN)
     def tell(asker: Asker, key_id: str) -> Response:
@@ -73,7 +86,7 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
         is_seen = key is not None and _seen_by(asker) in (None, key.owner.id)
         return json_response(key_told(_found(key if is_seen else None, key_id)))
 
-    @routes.delete("/<key_id>")
+    @routes.delete("/<key:key_id>")
     @describes(keys.REVOKE)
     @needs(Scope.ADMIN)
     def revoke(asker: Asker, key_id: str) -> Response:

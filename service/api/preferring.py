@@ -4,7 +4,7 @@ import re
 
 from flask import Request
 
-WAIT = re.compile(r"wait\s*=\s*\"?(\d{1,9})\"?", re.IGNORECASE)
+WAIT = re.compile(r"wait\s*=\s*\"?(\d+)\"?", re.IGNORECASE | re.ASCII)
 
 
 def wait_asked(asked: Request, *, most_s: int) -> int | None:
@@ -16,5 +16,6 @@ def wait_asked(asked: Request, *, most_s: int) -> int | None:
         for preference in field.split(","):
             found = WAIT.fullmatch(preference.split(";")[0].strip())
             if found is not None:
-                return min(int(found[1]), most_s)
+                digits = found[1].lstrip("0")[: len(str(most_s)) + 1]  # of more than `most_s` the first ones tell so
+                return min(int(digits or 0), most_s)
     return None

@@ -1,19 +1,24 @@
 """From what a request says to a checked model, every fault told with its place."""
 
+import json
+import re
 from collections.abc import Iterator
-from typing import Any, TypeVar
+from typing import Any, TypeVar, get_args
 
 from flask import Request
 from pydantic import ValidationError
 
-from layout.documents.reading import Part, check_document, read_json
+from layout.documents.reading import NEEDED, Part, check_document, read_json
 from layout.errors import DocumentError, Problem
 from service.api.describing import operation_asked
 from service.api.failures import too_large
+from service.api.models.orders import NAMING_TAGS
 from service.api.problems import ProblemError
 from service.media_types import JSON_MEDIA_TYPE
 
 ModelT = TypeVar("ModelT", bound=Part)
+WHOLE = re.compile("-?(0|[1-9][0-9]{0,399})")  # as JSON writes it (RFC 8259 section 6); no field needs more digits
+TRUTHS = {"true": True, "false": False}
 PLAIN = "a plain value is needed, got an object"
 NUL = "\0"  # no name of ours holds one, and no text of PostgreSQL (its manual, section 8.3)
 HOLDS_NUL = "it holds the character NUL (U+0000), which nothing here does; leave it out"
@@ -62,13 +67,14 @@ def read_text(asked: Request, model: type[ModelT], text: bytes, *, document: str
     if operation is not None and model not in operation.checked_by:
         raise LookupError(f"{operation.id} is not described as bringing {model.__name__}")
     value, stated = read_json(text or b"{}", document=document)
-    if stated:
-        faults = tuple(Problem(pointer=place, message=plain) for place in stated)
+    # A number of a settings document may say what it is worth, wherever the document stands.
+    faults = tuple(Problem(pointer=place, message=plain) for place in stated if not place.startswith("/settings/"))
+    if faults:
         raise DocumentError(document=document, problems=faults)
     faults = tuple(Problem(pointer=place, message=HOLDS_NUL) for place in _places_of_nul(value, ""))
     if faults:
         raise DocumentError(document=document, problems=faults)
-    return check_document(model, value, document=document)
+    return check_document(model, value, document=document, union_tags=NAMING_TAGS)
 
 
 def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
@@ -88,12 +94,23 @@ def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
             raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
         if NUL in values[0]:
             raise _invalid(name, f"{name} is {values[0][:100]!r}: {HOLDS_NUL}")
+    written = {name: _value_of(text, model.model_fields[name].annotation) for name, text in asked.args.items()}
     try:
-        return model.model_validate(asked.args.to_dict())
+        return model.model_validate_json(json.dumps(written), strict=True)
     except ValidationError as error:
         fault = error.errors(include_url=False)[0]
-        name, seen = str(fault["loc"][0]), str(fault["input"])[:100]
-        raise _invalid(name, f"{name} is {seen!r}: {fault['msg'].removeprefix('Value error, ')}") from error
+        name = str(fault["loc"][0])
+        message = NEEDED.get(fault["type"]) or fault["msg"].removeprefix("Value error, ")
+        raise _invalid(name, f"{name} is {asked.args.get(name, '')[:100]!r}: {message}") from error
+
+
+def _value_of(text: str, annotation: Any) -> Any:
+    """A parameter as the JSON value it writes: the text where that is none of its type."""
+    types = {annotation, *get_args(annotation)}
+    if bool in types and text in TRUTHS:
+        return TRUTHS[text]
+    is_whole = any(wanted is int or int in get_args(wanted) for wanted in types)
+    return int(text) if is_whole and WHOLE.fullmatch(text) else text
 
 
 def _places_of_nul(value: Any, place: str) -> Iterator[str]:

@@ -19,6 +19,7 @@ FORM = "multipart/form-data"
 # Documents that people write: given and taken as they are.
 WHOLE = ("Movement", "Cutter", "Settings", "SheetJob")
 TYPES = {"string": "str", "integer": "int", "number": "float", "boolean": "bool", "null": "None"}
+RECORDS, FILE = "records", "LayoutRecord"  # the module, and the schema of which all of it is part
 COMMON = "common"  # the module of shapes that several groups of operations share
 MOST = 120  # characters of a line
 USAGE = "usage: python -m service.client.generate FILE, or - for standard input\n"
@@ -28,7 +29,8 @@ HEAD = '"""{what} Written by generate.py from the API document; not to be change
 def shapes_of(document: Any) -> dict[str, str]:
     """The package of typed dictionaries, one for each schema of what is sent and told in JSON, by module.
 
-    A module holds what one group of operations alone sends and is told; what several do stands in common.py.
+    A module holds what one group of operations alone sends and is told; what several do stands in common.py, but for
+    what layout.json holds, which stands in records.py.
     """
     schemas = document["components"]["schemas"]
     homes = _homes(document, schemas)
@@ -48,16 +50,21 @@ def _homes(document: Any, schemas: Any) -> dict[str, str]:
     for tag, told in _in_json(document):
         for name in _reached([told], schemas):
             groups.setdefault(name, set()).add(tag.replace(" ", "_"))
-    return {name: groups[name].pop() if len(groups[name]) == 1 else COMMON for name in sorted(groups)}
+    of_files = _reached([{"$ref": FILE}], schemas)
+    shared = {name: RECORDS if name in of_files else COMMON for name in groups}
+    return {name: groups[name].pop() if len(groups[name]) == 1 else shared[name] for name in sorted(groups)}
 
 
 def _shapes_module(module: str, names: list[str], homes: dict[str, str], schemas: Any) -> str:
     text = "\n\n\n".join(_shape(name, schemas[name]) for name in names)
-    typing = [word for word in ("Any", "NotRequired", "TypedDict") if re.search(rf"\b{word}\b", text)]
+    typing = [word for word in ("Any", "NotRequired", "TypeAlias", "TypedDict") if re.search(rf"\b{word}\b", text)]
     foreign = sorted({name for own in names for name in _names_in(schemas[own])} - set(names))
     imports = [f"from typing import {', '.join(typing)}\n"] if typing else []
-    if foreign:  # of common.py alone: what another group needs too stands there
-        imports.append("\n" * bool(imports) + f"from service.client.shapes.{COMMON} import {', '.join(foreign)}\n")
+    for other in sorted({homes[name] for name in foreign}):  # common.py, records.py: what others need stands there
+        needed = ", ".join(name for name in foreign if homes[name] == other)
+        imports.append(
+            "\n" * (len(imports) == 1 and bool(typing)) + f"from service.client.shapes.{other} import {needed}\n"
+        )
     space = "\n" * bool(imports) * (2 if text.startswith("class") else 1)
     said = f"What is sent and told: {module.replace('_', ' ')}."
     return HEAD.format(what=said) + "".join(imports) + space + text + "\n"
@@ -134,7 +141,7 @@ def _names_in(value: Any) -> set[str]:
 def _shape(name: str, schema: Any) -> str:
     fields = schema.get("properties")
     if not fields or any(keyword.iskeyword(field) for field in fields):
-        return f"{name} = {_type(schema)}"
+        return f"{name}: TypeAlias = {_type(schema)}"
     required = schema.get("required", [])
     said = _sentence(schema.get("description", name))
     lines = [f"class {name}(TypedDict):", f'    """{said}"""', ""]

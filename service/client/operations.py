@@ -28,10 +28,10 @@ class Operations:
         path = "/metrics"
         return self._caller.send("GET", path)
 
-    def tell_api_document(self) -> shapes.FileRecord:
+    def tell_api_document(self) -> shapes.ApiDocument:
         """This document."""
         path = "/openapi.json"
-        return cast("shapes.FileRecord", self._caller.json("GET", path))
+        return cast("shapes.ApiDocument", self._caller.json("GET", path))
 
     def list_problem_kinds(self) -> shapes.ProblemKindsAnswer:
         """The kinds of errors."""
@@ -234,7 +234,7 @@ class Operations:
         return cast("shapes.OrderAnswer", self._caller.json("POST", path, body=Form(parts), headers=once()))
 
     def list_orders(self, query: Query | None = None) -> shapes.OrdersAnswer:
-        """Orders, those changed last first."""
+        """Orders, in the order of their last change, the newest last."""
         path = "/v1/orders"
         return cast("shapes.OrdersAnswer", self._caller.json("GET", path, query=query))
 
@@ -336,10 +336,10 @@ class Operations:
         path = place("/v1/runs/{run_id}/results.zip", {"run_id": run_id})
         return self._caller.send("GET", path)
 
-    def list_schemas(self) -> shapes.FileRecord:
+    def list_schemas(self) -> shapes.SchemasAnswer:
         """The documents there are schemas of."""
         path = "/v1/schemas"
-        return cast("shapes.FileRecord", self._caller.json("GET", path))
+        return cast("shapes.SchemasAnswer", self._caller.json("GET", path))
 
     def tell_schema(self, name: str) -> Answer:
         """The JSON Schema of a document."""

@@ -1,5 +1,7 @@
 """What the service tells of itself."""
 
+from typing import Any
+
 from pydantic import ConfigDict, Field
 
 from layout.documents.reading import Part
@@ -56,6 +58,33 @@ class ProblemKindsAnswer(Part):
     """Every kind of error there is. More may come."""
 
     problems: list[ProblemKindAnswer]
+
+
+class ApiDocument(Part):
+    """A document of OpenAPI 3.1; what it holds is said by that specification."""
+
+    model_config = ConfigDict(extra="allow")
+
+    openapi: str = Field(examples=["3.1.0"])
+    info: dict[str, Any]
+    paths: dict[str, Any]
+    components: dict[str, Any]
+
+
+class SchemasAnswer(Part):
+    """Where each schema is, by the name of what it is of."""
+
+    schemas: dict[str, str]
+
+
+class SchemaAnswer(Part):
+    """A JSON Schema; what it holds is said by the dialect that it names."""
+
+    model_config = ConfigDict(extra="allow")
+
+    dialect: str = Field(alias="$schema")
+    type: str
+    properties: dict[str, Any]
 
 
 class Problem(Part):

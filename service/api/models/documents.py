@@ -2,9 +2,24 @@
 
 from typing import Annotated, Any, Literal
 
-from pydantic import Field, create_model
+from pydantic import BaseModel, Field, GetJsonSchemaHandler, create_model
 
 from layout.documents.reading import Part
+
+DESCRIBED_BY = "x-described-by"
+
+
+class Described:
+    """Says in the API document what a value is that is checked later, by a reader of its own."""
+
+    def __init__(self, model: type[BaseModel]) -> None:
+        """Note by which model."""
+        self._model = model
+
+    def __get_pydantic_json_schema__(self, core_schema: object, handler: GetJsonSchemaHandler) -> dict[str, Any]:
+        """The name of the model, from which `api_schemas` makes a reference."""
+        return {DESCRIBED_BY: self._model.__name__}
+
 
 MOST_LISTED = 200  # documents of one page
 

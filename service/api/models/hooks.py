@@ -6,14 +6,15 @@ from pydantic import Field, StrictBool, field_validator
 from pydantic.json_schema import SkipJsonSchema
 
 from layout.documents.reading import Part
-from service.hooks.guard import MOST_URL_CHARACTERS
+from service.api.models.messages import Message, TestMessage
+from service.limits import HOOK_LIMITS
 from service.orders.states import EventType
 
 MOST_DELIVERIES_LISTED = 200  # deliveries of one page: up to 4 MB of JSON
 MOST_OLD_HOURS = 168  # hours; a week, which a receiver that is set by hand may need
 DELIVERY_ID = r"^msg_[0-9a-f]{32}$"
 
-Url = Annotated[str, Field(min_length=1, max_length=MOST_URL_CHARACTERS)]
+Url = Annotated[str, Field(min_length=1, max_length=HOOK_LIMITS.url_characters)]
 Types = Annotated[list[EventType], Field(min_length=1, max_length=100)]
 
 
@@ -106,7 +107,7 @@ class DeliveryAnswer(Part):
     id: str = Field(description="the webhook-id of every try", examples=["msg_0644fa2bd7a0003f1c5be7e27ab1d2c4"])
     hook: str
     event: int | None = Field(description="the number of the event it tells of; null: a test")
-    message: dict[str, Any] = Field(description="what is told, as it is posted")
+    message: Message | TestMessage = Field(description="what is told, as it is posted")
     state: str = Field(description="waiting, delivered or failed")
     tries: int = Field(description="made since it was written, or asked for again")
     next_try_at: str | None = Field(description="null: there is none")

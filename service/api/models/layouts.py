@@ -1,10 +1,11 @@
 """Layouts, trial pieces and sheets, as requests ask for them and answers tell them."""
 
-from typing import Annotated, Any
+from typing import Annotated
 
-from pydantic import AfterValidator, ConfigDict, Field, RootModel
+from pydantic import AfterValidator, Field, RootModel
 
 from layout.documents.reading import Part
+from service.api.models.records import DiscAnswer, LayoutRecord
 from service.limits import Limits
 from service.reason import checked_reason
 
@@ -53,13 +54,6 @@ class NoQuery(Part):
     """No parameter is taken."""
 
 
-class DiscAnswer(Part):
-    """Which disc of its set a layout is."""
-
-    number: int = Field(description="from 1")
-    of: int
-
-
 class LayoutAnswer(Part):
     """A layout."""
 
@@ -70,7 +64,7 @@ class LayoutAnswer(Part):
     disc: DiscAnswer
     good_to_cut: bool
     links: dict[str, str] = Field(description="where its files are, by name; those kept back are left out")
-    layout: dict[str, Any] = Field(description="the record of the disc: projections, findings, report")
+    layout: LayoutRecord = Field(description="the record of the disc: notes, projections, findings")
 
 
 class LayoutsAnswer(Part):
@@ -81,17 +75,3 @@ class LayoutsAnswer(Part):
 
 class MadeAnswer(RootModel[LayoutAnswer | LayoutsAnswer]):
     """A layout, or one for each disc."""
-
-
-class TrialPieceAnswer(RootModel[dict[str, Any]]):
-    """A trial piece: what is cut, and what is measured on it."""
-
-
-class SheetPlanAnswer(RootModel[dict[str, Any]]):
-    """A plan of sheets: what lies where, and what is left."""
-
-
-class FileRecord(Part):
-    """A file that is JSON; its member `format`, where it has one, says which."""
-
-    model_config = ConfigDict(extra="allow")

@@ -1,10 +1,27 @@
 """Messages to hooks, as they are posted."""
 
-from typing import Any
-
 from pydantic import Field
 
 from layout.documents.reading import Part
+from service.api.models.records import DocumentTold
+
+
+class EventData(Part):
+    """What an event tells beside; what does not apply to its type is left out, and after a deletion all is."""
+
+    revision: int = Field(
+        default=1, description="of the plan: planned, attention, ready, released, superseded, reports"
+    )
+    state: str = Field(default="", description="of order.planned: what it led to")
+    reason: str | None = Field(default=None, description="of attention, failed and cancelled: why")
+    reference: str | None = Field(default=None, description="of order.received: the sender's own")
+    movement: DocumentTold | None = Field(default=None, description="of order.received; not where files are repeated")
+    repeat_of: str = Field(default="", description="of order.received: the order whose files are made again")
+    despite_findings: str | None = Field(default=None, description="of order.released: why despite what stands")
+    recalled: bool = Field(default=False, description="of order.cancelled: whether released files were called back")
+    count: int | None = Field(default=None, description="of reports: how many discs")
+    note: str | None = Field(default=None, description="of reports and verdicts")
+    measures: dict[str, float] = Field(default={}, description="of order.measured: numbers by what was measured")
 
 
 class MessageData(Part):
@@ -15,7 +32,7 @@ class MessageData(Part):
     type: str
     at: str
     by: str | None
-    data: dict[str, Any] | None = Field(description="the event's own data; null where it would not fit into 20 kB")
+    data: EventData | None = Field(description="the event's own data; null where it would not fit into 20 kB")
     data_left_out: bool = Field(default=False, description="whether data was left out, to be read at /v1/events")
     reference: str | None
     state: str

@@ -1,34 +1,40 @@
 """Orders, as requests ask for them and answers tell them."""
 
 import re
+from collections.abc import Mapping
 from datetime import UTC, datetime
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, BeforeValidator, Field, StrictBool
+from pydantic import AfterValidator, BeforeValidator, Discriminator, Field, StrictBool, Tag, TypeAdapter
 
+from layout.documents import Settings
 from layout.documents.reading import Part
+from service.api.models.documents import Described
+from service.api.models.messages import EventData
+from service.api.models.quotes import Price
+from service.api.models.records import CutterTold, DiscAnswer, DocumentTold, WorthTold
 from service.orders.states import State
 
 MOST_PAGE = 200  # orders of one page: about 600 kB of JSON
 MOST_WAIT_S = 30  # s; proxies give up after 60
 ORDER_ID = r"^order_[0-9a-f]{32}$"
+PLAN_TAG = r"^[1-9][0-9]{0,9}-[0-9a-f]{64}$"
 MOST_REVISION = 2_147_483_647  # what the column holds
 MOST_SEQ = 9_223_372_036_854_775_807  # so
 
 RFC_3339 = re.compile(r"\d{4}-\d\d-\d\d[Tt ]\d\d:\d\d:\d\d(\.\d+)?([Zz]|[+-]\d\d:\d\d)?")  # the zone is asked for below
 
 
-PLAN_TAG = r"^[1-9][0-9]{0,9}-[0-9a-f]{64}$"
 def _one_line(text: str) -> str:
     if not text.isprintable():
         raise ValueError("it must be one line of printable characters")
     return text
 
 
-def _rfc_3339(text: object) -> object:
-    if isinstance(text, str) and RFC_3339.fullmatch(text) is None:
+def _rfc_3339(text: object) -> datetime:
+    if not isinstance(text, str) or RFC_3339.fullmatch(text) is None:
         raise ValueError("it must be a moment such as 2026-12-02T10:00:00Z (RFC 3339)")
-    return text
+    return TypeAdapter(datetime).validate_strings(text)
 
 
 def _with_zone(moment: datetime) -> datetime:
@@ -58,14 +64,32 @@ class DocumentName(Part):
     )
 
 
+# Words that tell the two ways to name a document apart; they stand in places of faults, and in no document.
+BY_ID, WITH_REVISION = "named by its id", "named with its revision"
+NAMING_TAGS = frozenset({BY_ID, WITH_REVISION})
+
+
+def _way_of_naming(value: object) -> str:
+    return WITH_REVISION if isinstance(value, Mapping | DocumentName) else BY_ID
+
+
+Named = Annotated[
+    Annotated[str, Tag(BY_ID)] | Annotated[DocumentName, Tag(WITH_REVISION)], Discriminator(_way_of_naming)
+]
+
+
+# Read by `read_settings`, as the part of that name is.
+SettingsBrought = Annotated[dict[str, Any], Described(Settings)]
+
+
 class OrderBody(Part):
     """The part `order`: what is ordered beside the tune."""
 
-    movement: DocumentName | str | None = Field(
+    movement: Named | None = Field(
         default=None, description="which movement; null where the part movement brings one", examples=["fernhollow-31"]
     )
-    cutter: DocumentName | str | None = Field(default=None, description="which cutter; null for the default")
-    settings: dict[str, Any] = Field(default_factory=dict, description="a settings document")
+    cutter: Named | None = Field(default=None, description="which cutter; null for the default")
+    settings: SettingsBrought = Field(default_factory=dict, description="a settings document")
     quantity: Annotated[int, Field(ge=1, le=10_000)] = Field(default=1, description="copies of each disc")
     reference: OneLine | None = Field(default=None, description="the sender's own, such as an order number")
     tune_name: OneLine | None = Field(default=None, description="what the tune's file is called")
@@ -119,6 +143,9 @@ class ReleaseBody(Part):
     """Who releases an order, which plan of it was seen, and why despite what stands."""
 
     by: OneLine = Field(description="the person who decided", examples=["A. Maker"])
+    plan: Annotated[str, Field(pattern=PLAN_TAG)] = Field(
+        description="the tag of the plan that the person has seen, as the order tells it; no other is released"
+    )
     despite_findings: Reason | None = Field(
         default=None, description="why it shall be cut although a person had to decide", examples=["a test cut"]
     )
@@ -130,7 +157,7 @@ class ReplanBody(Part):
     movement_revision: Annotated[int, Field(ge=1, le=MOST_REVISION)] | None = Field(
         default=None, description="a revision of the order's movement"
     )
-    settings: dict[str, Any] | None = Field(default=None, description="a settings document in place of the old one")
+    settings: SettingsBrought | None = Field(default=None, description="a settings document in place of the old one")
     most_lost_share: Annotated[float, Field(ge=0, le=1)] | None = None
 
 
@@ -143,9 +170,6 @@ class CancelBody(Part):
 
 class ReportBody(Part):
     """What the shop says of a released order."""
-    plan: Annotated[str, Field(pattern=PLAN_TAG)] = Field(
-        description="the tag of the plan that the person has seen, as the order tells it; no other is released"
-    )
 
     what: Literal["taken", "cut", "scrapped", "measured"]
     count: Annotated[int, Field(ge=0, le=1_000_000)] | None = Field(default=None, description="how many discs")
@@ -168,14 +192,76 @@ class FileAnswer(Part):
     href: str | None = Field(description="where it is; null while it is kept back")
 
 
+class MovementInput(DocumentTold):
+    """The movement that a plan was made with."""
+
+    sha256: str = Field(description="of its text")
+
+
+class CutterInput(CutterTold):
+    """The cutter that a plan was made with."""
+
+    sha256: str = Field(description="of its text")
+
+
+class RepeatedPlan(Part):
+    """The plan whose files were made again."""
+
+    order: str
+    revision: int
+
+
+class PlanInputs(Part):
+    """What a plan was made from; all is left out once the order is deleted."""
+
+    tune_sha256: str = ""
+    movement: MovementInput | None = None
+    cutter: CutterInput | None = None
+    settings_sha256: str = ""
+    despite_findings: str | None = None
+    repeat_of: RepeatedPlan | None = Field(default=None, description="left out where the plan was made for this order")
+
+
+class FindingCounts(Part):
+    """How many findings there are of each level."""
+
+    error: int
+    warning: int
+    advice: int
+
+
+class PlannedDisc(DiscAnswer):
+    """A disc of a plan."""
+
+    fingerprint: str
+    layout_sha256: str = Field(description="of all that was laid out and found, whatever reason it is cut for")
+    good_to_cut: bool
+    findings: FindingCounts
+    worth: WorthTold
+    asked_count: int = Field(description="notes that the tune asks for")
+    kept_count: int = Field(description="notes that the disc plays")
+    time_s: float | None = Field(description="to make it; null where the documents do not say")
+    price: Price | None
+
+
+class TuneTold(Part):
+    """The tune of an order."""
+
+    name: str | None
+    sha256: str = Field(description='"" once it is deleted')
+
+
 class PlanAnswer(Part):
     """A plan: what was made for an order."""
 
     revision: int
+    tag: str | None = Field(
+        description="names this plan, by its revision and its files: a release says it; null where they were deleted"
+    )
     engine_version: str
-    inputs: dict[str, Any]
+    inputs: PlanInputs
     title: str
-    discs: list[dict[str, Any]]
+    discs: list[PlannedDisc]
     good_to_cut: bool
     lost_share: float
     made_at: str
@@ -195,9 +281,9 @@ class OrderAnswer(Part):
     reference: str | None
     quantity: int
     is_test: bool
-    movement: dict[str, Any]
-    cutter: dict[str, Any]
-    tune: dict[str, Any]
+    movement: DocumentTold
+    cutter: CutterTold
+    tune: TuneTold
     most_lost_share: float
     release_alone: bool
     quote: str | None
@@ -227,7 +313,7 @@ class EventAnswer(Part):
     type: str
     at: str
     by: str | None
-    data: dict[str, Any]
+    data: EventData
 
 
 class EventsAnswer(Part):
@@ -235,6 +321,3 @@ class EventsAnswer(Part):
 
     events: list[EventAnswer]
     last: int = Field(description="the number to ask on after")
-    tag: str | None = Field(
-        description="names this plan, by its revision and its files: a release says it; null where they were deleted"
-    )

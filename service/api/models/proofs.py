@@ -1,11 +1,12 @@
 """What a customer says about a proof."""
 
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
 from pydantic import Field
 
 from layout.documents.reading import Part
 from service.api.models.orders import OneLine
+from service.api.models.records import DocumentTold
 
 
 class VerdictBody(Part):
@@ -38,7 +39,7 @@ class ProofAnswer(Part):
 
     reference: str | None
     title: str
-    movement: dict[str, Any]
+    movement: DocumentTold
     revision: int
     waits_for_decision: bool
     discs: list[ProofDiscAnswer]

@@ -1,11 +1,11 @@
 """Runs, as requests ask for them and answers tell them."""
 
-from typing import Annotated, Any
+from typing import Annotated
 
 from pydantic import Field, StrictBool
 
 from layout.documents.reading import Part
-from service.api.models.orders import DocumentName, OneLine
+from service.api.models.orders import Named, OneLine, SettingsBrought
 from service.limits import Limits
 
 MOST_PAIRS = Limits().run_orders
@@ -17,21 +17,21 @@ class PairBody(Part):
     """One tune of the archive for one movement."""
 
     tune: Annotated[str, Field(min_length=1, max_length=200)] = Field(description="its name in the archive")
-    movement: DocumentName | str = Field(description="which movement", examples=["fernhollow-31"])
+    movement: Named = Field(description="which movement", examples=["fernhollow-31"])
     reference: OneLine | None = Field(default=None, description="of its order")
 
 
 class RunBody(Part):
     """The part `run`: what is ordered of the tunes in the part `archive`."""
 
-    movements: Annotated[list[DocumentName | str], Field(max_length=100)] = Field(
+    movements: Annotated[list[Named], Field(max_length=100)] = Field(
         default_factory=list, description="every tune of the archive for each of these", examples=[["fernhollow-31"]]
     )
     pairs: Annotated[list[PairBody], Field(max_length=MOST_PAIRS)] = Field(
         default_factory=list, description="these pairs, in place of every tune for each of `movements`"
     )
-    cutter: DocumentName | str | None = Field(default=None, description="which cutter; null for the default")
-    settings: dict[str, Any] = Field(default_factory=dict, description="a settings document for all")
+    cutter: Named | None = Field(default=None, description="which cutter; null for the default")
+    settings: SettingsBrought = Field(default_factory=dict, description="a settings document for all")
     quantity: Annotated[int, Field(ge=1, le=10_000)] = Field(default=1, description="copies of each disc")
     reference: OneLine | None = Field(
         default=None, description="the sender's own; orders without one of theirs get it with their number"

@@ -5,13 +5,15 @@ from collections.abc import Mapping
 from service.api.describing import Answer, Example, Operation
 from service.api.models.about import (
     AboutAnswer,
+    ApiDocument,
     HealthAnswer,
     LimitsAnswer,
     ProblemKindAnswer,
     ProblemKindsAnswer,
     ReadyAnswer,
+    SchemaAnswer,
+    SchemasAnswer,
 )
-from service.api.models.layouts import FileRecord
 from service.api.operations.common import ETAG, IF_NONE_MATCH, NOT_MODIFIED, told
 
 TAG = "about"
@@ -49,9 +51,11 @@ PROBLEM_KIND = _open(
 DOCUMENT = _open(
     "tell_api_document",
     "This document",
-    told(FileRecord, "The API, described after OpenAPI 3.1.", ETAG),
+    told(ApiDocument, "The API, described after OpenAPI 3.1.", ETAG),
 )
-SCHEMAS = _open("list_schemas", "The documents there are schemas of", told(FileRecord, "Where each schema is.", ETAG))
+SCHEMAS = _open(
+    "list_schemas", "The documents there are schemas of", told(SchemasAnswer, "Where each schema is.", ETAG)
+)
 SCHEMA = Operation(
     id="tell_schema",
     tag=TAG,
@@ -63,7 +67,7 @@ SCHEMA = Operation(
         Answer(
             status=200,
             meaning="The schema, in the dialect 2020-12.",
-            contents={"application/schema+json": FileRecord},
+            contents={"application/schema+json": SchemaAnswer},
             headers=(ETAG,),
         ),
         NOT_MODIFIED,

@@ -7,15 +7,14 @@ from layout.documents.sheets import SheetJob
 from service.api.describing import Answer, Body, Example, FormPart, HeaderField, Operation
 from service.api.models.layouts import (
     DespiteQuery,
-    FileRecord,
     LayoutAnswer,
     LayoutQuery,
     MadeAnswer,
     NoQuery,
-    SheetPlanAnswer,
-    TrialPieceAnswer,
     TrialPieceQuery,
 )
+from service.api.models.report_records import FileRecord
+from service.api.models.workshop_records import SheetPlanAnswer, TrialPieceAnswer
 from service.api.operations.common import (
     CONTENT_LOCATION,
     CSRF_TOKEN,

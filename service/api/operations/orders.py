@@ -1,7 +1,6 @@
 """Orders: placed, seen, listed, deleted, and decided about."""
 
 from service.api.describing import Answer, Body, Example, FormPart, HeaderField, Operation
-from service.api.models.layouts import FileRecord
 from service.api.models.orders import (
     CancelBody,
     EventsAnswer,
@@ -16,6 +15,7 @@ from service.api.models.orders import (
     ReportBody,
 )
 from service.api.models.proofs import ProofLinkAnswer
+from service.api.models.report_records import FileRecord
 from service.api.operations.common import (
     CONTENT_RANGE,
     CSRF_TOKEN,
@@ -95,7 +95,7 @@ PLACE = Operation(
 LIST = Operation(
     id="list_orders",
     tag=TAG,
-    summary="Orders, those changed last first",
+    summary="Orders, in the order of their last change, the newest last",
     query=OrdersQuery,
     answers=(told(OrdersAnswer, "A page of orders.", NEXT),),
     examples=(Example(status=200, query={"state": "ready", "limit": 10}),),

@@ -1,6 +1,6 @@
 """What is sent and told: about. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import TypedDict
+from typing import Any, TypedDict
 
 
 class AboutAnswer(TypedDict):
@@ -9,6 +9,15 @@ class AboutAnswer(TypedDict):
     service: str
     engine_version: str
     links: dict[str, str]
+
+
+class ApiDocument(TypedDict):
+    """A document of OpenAPI 3.1; what it holds is said by that specification."""
+
+    openapi: str
+    info: dict[str, Any]
+    paths: dict[str, Any]
+    components: dict[str, Any]
 
 
 class HealthAnswer(TypedDict):
@@ -47,3 +56,9 @@ class ProblemKindsAnswer(TypedDict):
     """Every kind of error there is. More may come."""
 
     problems: list["ProblemKindAnswer"]
+
+
+class SchemasAnswer(TypedDict):
+    """Where each schema is, by the name of what it is of."""
+
+    schemas: dict[str, str]

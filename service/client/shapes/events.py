@@ -1,6 +1,8 @@
 """What is sent and told: events. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import Any, TypedDict
+from typing import TypedDict
+
+from service.client.shapes.common import EventData
 
 
 class EventAnswer(TypedDict):
@@ -11,7 +13,7 @@ class EventAnswer(TypedDict):
     type: str
     at: str
     by: str | None
-    data: dict[str, Any]
+    data: "EventData"
 
 
 class EventsAnswer(TypedDict):

@@ -1,6 +1,8 @@
 """What is sent and told: hooks. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import Any, NotRequired, TypedDict
+from typing import NotRequired, TypeAlias, TypedDict
+
+from service.client.shapes.common import EventData
 
 
 class DeliveriesAnswer(TypedDict):
@@ -15,7 +17,7 @@ class DeliveryAnswer(TypedDict):
     id: str
     hook: str
     event: int | None
-    message: dict[str, Any]
+    message: "Message | TestMessage"
     state: str
     tries: int
     next_try_at: str | None
@@ -25,7 +27,7 @@ class DeliveryAnswer(TypedDict):
     finished_at: str | None
 
 
-EventType = str
+EventType: TypeAlias = str
 
 
 class EventTypeAnswer(TypedDict):
@@ -78,6 +80,29 @@ class HooksAnswer(TypedDict):
     hooks: list["HookAnswer"]
 
 
+class Message(TypedDict):
+    """A message of an event."""
+
+    type: str
+    timestamp: str
+    data: "MessageData"
+
+
+class MessageData(TypedDict):
+    """What a message tells: the event as /v1/events tells it, and what tells its order apart."""
+
+    seq: int
+    order: str
+    type: str
+    at: str
+    by: str | None
+    data: "EventData | None"
+    data_left_out: NotRequired[bool]
+    reference: str | None
+    state: str
+    is_test: bool
+
+
 class NewHookAnswer(TypedDict):
     """A hook with a new secret."""
 
@@ -98,3 +123,17 @@ class SecretBody(TypedDict):
     """How a secret is replaced."""
 
     old_valid_hours: NotRequired[int]
+
+
+class TestMessage(TypedDict):
+    """A message that tells nothing but that messages arrive."""
+
+    type: str
+    timestamp: str
+    data: "TestMessageData"
+
+
+class TestMessageData(TypedDict):
+    """Which hook is tried."""
+
+    hook: str

@@ -1,6 +1,6 @@
 """What is sent and told: keys. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import NotRequired, TypedDict
+from typing import NotRequired, TypeAlias, TypedDict
 
 
 class KeyAnswer(TypedDict):
@@ -67,4 +67,4 @@ class OwnerAnswer(TypedDict):
     is_shop: bool
 
 
-Scope = str
+Scope: TypeAlias = str

@@ -1,13 +1,8 @@
 """What is sent and told: layouts. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import Any, TypedDict
+from typing import TypeAlias, TypedDict
 
-
-class DiscAnswer(TypedDict):
-    """Which disc of its set a layout is."""
-
-    number: int
-    of: int
+from service.client.shapes.records import DiscAnswer, LayoutRecord
 
 
 class LayoutAnswer(TypedDict):
@@ -18,7 +13,7 @@ class LayoutAnswer(TypedDict):
     disc: "DiscAnswer"
     good_to_cut: bool
     links: dict[str, str]
-    layout: dict[str, Any]
+    layout: "LayoutRecord"
 
 
 class LayoutsAnswer(TypedDict):
@@ -27,4 +22,4 @@ class LayoutsAnswer(TypedDict):
     discs: list["LayoutAnswer"]
 
 
-MadeAnswer = "LayoutAnswer | LayoutsAnswer"
+MadeAnswer: TypeAlias = "LayoutAnswer | LayoutsAnswer"

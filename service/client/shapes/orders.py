@@ -1,6 +1,9 @@
 """What is sent and told: orders. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import Any, NotRequired, TypedDict
+from typing import Any, NotRequired, TypeAlias, TypedDict
+
+from service.client.shapes.common import Price
+from service.client.shapes.records import CutterTold, DocumentTold, WorthTold
 
 
 class CancelBody(TypedDict):
@@ -8,6 +11,13 @@ class CancelBody(TypedDict):
 
     reason: NotRequired[str | None]
     recalled: NotRequired[bool]
+
+
+class CutterInput(TypedDict):
+    """The cutter that a plan was made with."""
+
+    id: str
+    sha256: str
 
 
 class FileAnswer(TypedDict):
@@ -23,6 +33,22 @@ class FileAnswer(TypedDict):
     href: str | None
 
 
+class FindingCounts(TypedDict):
+    """How many findings there are of each level."""
+
+    error: int
+    warning: int
+    advice: int
+
+
+class MovementInput(TypedDict):
+    """The movement that a plan was made with."""
+
+    id: str
+    revision: int
+    sha256: str
+
+
 class OrderAnswer(TypedDict):
     """An order."""
 
@@ -32,9 +58,9 @@ class OrderAnswer(TypedDict):
     reference: str | None
     quantity: int
     is_test: bool
-    movement: dict[str, Any]
-    cutter: dict[str, Any]
-    tune: dict[str, Any]
+    movement: "DocumentTold"
+    cutter: "CutterTold"
+    tune: "TuneTold"
     most_lost_share: float
     release_alone: bool
     quote: str | None
@@ -62,9 +88,9 @@ class PlanAnswer(TypedDict):
     revision: int
     tag: str | None
     engine_version: str
-    inputs: dict[str, Any]
+    inputs: "PlanInputs"
     title: str
-    discs: list[dict[str, Any]]
+    discs: list["PlannedDisc"]
     good_to_cut: bool
     lost_share: float
     made_at: str
@@ -73,6 +99,33 @@ class PlanAnswer(TypedDict):
     despite_findings: str | None
     superseded_at: str | None
     files: list["FileAnswer"]
+
+
+class PlanInputs(TypedDict):
+    """What a plan was made from; all is left out once the order is deleted."""
+
+    tune_sha256: NotRequired[str]
+    movement: NotRequired["MovementInput | None"]
+    cutter: NotRequired["CutterInput | None"]
+    settings_sha256: NotRequired[str]
+    despite_findings: NotRequired[str | None]
+    repeat_of: NotRequired["RepeatedPlan | None"]
+
+
+class PlannedDisc(TypedDict):
+    """A disc of a plan."""
+
+    number: int
+    of: int
+    fingerprint: str
+    layout_sha256: str
+    good_to_cut: bool
+    findings: "FindingCounts"
+    worth: "WorthTold"
+    asked_count: int
+    kept_count: int
+    time_s: float | None
+    price: "Price | None"
 
 
 class ProofLinkAnswer(TypedDict):
@@ -88,6 +141,13 @@ class ReleaseBody(TypedDict):
     by: str
     plan: str
     despite_findings: NotRequired[str | None]
+
+
+class RepeatedPlan(TypedDict):
+    """The plan whose files were made again."""
+
+    order: str
+    revision: int
 
 
 class ReplanBody(TypedDict):
@@ -107,7 +167,7 @@ class ReportBody(TypedDict):
     measures: NotRequired[dict[str, float]]
 
 
-State = str
+State: TypeAlias = str
 
 
 class StateTuneAnswer(TypedDict):
@@ -125,3 +185,10 @@ class StateTunesAnswer(TypedDict):
     """All test tunes."""
 
     tunes: list["StateTuneAnswer"]
+
+
+class TuneTold(TypedDict):
+    """The tune of an order."""
+
+    name: str | None
+    sha256: str

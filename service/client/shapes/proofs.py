@@ -1,6 +1,8 @@
 """What is sent and told: proofs. Written by generate.py from the API document; not to be changed by hand."""
 
-from typing import Any, NotRequired, TypedDict
+from typing import NotRequired, TypedDict
+
+from service.client.shapes.records import DocumentTold
 
 
 class ProofAnswer(TypedDict):
@@ -8,7 +10,7 @@ class ProofAnswer(TypedDict):
 
     reference: str | None
     title: str
-    movement: dict[str, Any]
+    movement: "DocumentTold"
     revision: int
     waits_for_decision: bool
     discs: list["ProofDiscAnswer"]

@@ -2,12 +2,7 @@
 
 from typing import TypedDict
 
-
-class Price(TypedDict):
-    """An amount of money."""
-
-    amount: str
-    currency: str
+from service.client.shapes.common import Price
 
 
 class QuoteAnswer(TypedDict):

@@ -26,7 +26,7 @@ class PairBody(TypedDict):
     """One tune of the archive for one movement."""
 
     tune: str
-    movement: "DocumentName | str"
+    movement: "str | DocumentName"
     reference: NotRequired[str | None]
 
 
@@ -45,9 +45,9 @@ class RunAnswer(TypedDict):
 class RunBody(TypedDict):
     """The part `run`: what is ordered of the tunes in the part `archive`."""
 
-    movements: NotRequired[list["DocumentName | str"]]
+    movements: NotRequired[list["str | DocumentName"]]
     pairs: NotRequired[list["PairBody"]]
-    cutter: NotRequired["DocumentName | str | None"]
+    cutter: NotRequired["str | DocumentName | None"]
     settings: NotRequired[dict[str, Any]]
     quantity: NotRequired[int]
     reference: NotRequired[str | None]

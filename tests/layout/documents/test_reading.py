@@ -35,7 +35,7 @@ FAULTS: dict[str, tuple[str | bytes, str, str]] = {
     "worth that is no number": (
         '{"x": {"value": 1, "plus_minus": "a"}, "y": {"value": 2, "plus_minus": -1}}',
         "/x/plus_minus",
-        "Input should be a valid number",
+        "a number is needed, got 'a'",
     ),
 }
 

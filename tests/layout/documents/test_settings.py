@@ -19,7 +19,7 @@ NUDGE_REFUSED = [(-0.1, "greater than or equal to 0"), (50.1, "less than or equa
 BAR_REFUSED = [
     (0, "greater than or equal to 1, got 0"),
     (MOST_BAR + 1, "less than or equal to 100000"),
-    (1.5, "valid integer"),
+    (1.5, "a whole number is needed"),
     (True, "a whole number is needed, got true"),
     ("3", 'a whole number is needed, got "3"'),
 ]
@@ -48,7 +48,11 @@ FIELDS: dict[str, tuple[Any, list[Any], list[tuple[Any, str]]]] = {
     "/octave_fit": (0.6, [0.001, 1], [(0, "greater than 0, got 0"), (1.01, "less than or equal to 1")]),
     "/largest_nudge_ms": (20.0, [0, MOST_NUDGE_MS], NUDGE_REFUSED),
     "/largest_melody_nudge_ms": (6.0, [0, MOST_NUDGE_MS], NUDGE_REFUSED),
-    "/channels/leave_out": ((), [[], [1, 16], [3, 3]], [([0], "/channels/leave_out/0: .*got 0"), (3, "valid tuple")]),
+    "/channels/leave_out": (
+        (),
+        [[], [1, 16], [3, 3]],
+        [([0], "/channels/leave_out/0: .*got 0"), (3, "a list is needed, got 3")],
+    ),
     "/channels/keep_only": (
         (),
         [[], [1, 16]],
@@ -56,7 +60,11 @@ FIELDS: dict[str, tuple[Any, list[Any], list[tuple[Any, str]]]] = {
     ),
     "/channels/lead": (None, [None, 1, 16], FROM_ONE_TO_16),
     "/sequence": (1, [1, 65_535], [(0, "equal to 1, got 0"), (65_536, "equal to 65535"), (True, "got true")]),
-    "/discs": (1, [1, MOST_DISCS], [(0, "equal to 1, got 0"), (25, "equal to 24, got 25"), (1.5, "integer")]),
+    "/discs": (
+        1,
+        [1, MOST_DISCS],
+        [(0, "equal to 1, got 0"), (25, "equal to 24, got 25"), (1.5, "a whole number is needed, got 1.5")],
+    ),
     "/load_limit": ("keep", ["keep", "ignore"], [("off", "'keep' or 'ignore', got 'off'")]),
     "/time_limit_s": (None, [None, 0.001, 86_400], [(0, "equal to 0.001, got 0"), (86_401, "equal to 86400")]),
     "/writing/pluck_again_s": (None, [None, 0.1, 10], [(0.09, "equal to 0.1, got 0.09"), (10.1, "equal to 10")]),

@@ -18,7 +18,7 @@ from service.access.keys import NewKey, revoke_key
 from service.access.scopes import Scope
 from service.access.secret_texts import new_key_secret
 from service.api.asking import Access, Openness, access_of
-from service.app import create_app
+from service.app import OPENED, create_app
 from service.moments import utc_now
 from service.parts import Parts
 from service.settings import AccessSettings
@@ -52,8 +52,8 @@ TABLE: dict[str, Access] = {
     "GET /v1/keys": ADMIN,
     "POST /v1/keys": ADMIN,
     "GET /v1/keys/me": ANY_KEY,
-    "GET /v1/keys/<key_id>": ADMIN,
-    "DELETE /v1/keys/<key_id>": ADMIN,
+    "GET /v1/keys/<key:key_id>": ADMIN,
+    "DELETE /v1/keys/<key:key_id>": ADMIN,
     "GET /v1/limits": OPEN,
     "GET /v1/movements": OPEN_AND_MORE,
     "GET /v1/movements/<document_id>": OPEN_AND_MORE,
@@ -149,16 +149,18 @@ class Keys:
 
 
 @pytest.fixture(scope="module")
-def shop(tmp_path_factory: pytest.TempPathFactory) -> Iterator[tuple[Flask, Parts]]:
+def shop(tmp_path_factory: pytest.TempPathFactory, module_database_url: str | None) -> Iterator[tuple[Flask, Parts]]:
     """The whole service on loopback, which counts so far that nothing is refused for coming too often."""
     folder = tmp_path_factory.mktemp("shop")
-    parts = parts_of(folder)
+    parts = parts_of(folder, module_database_url)
     settings = replace(
         parts.settings,
         access=AccessSettings(listens_on_loopback=True, read_rate=(10**6, 60), write_rate=(10**6, 60)),
     )
-    yield create_app(settings, planner=PricingPlanner()), parts
-    parts.store.close()
+    app = create_app(settings, planner=PricingPlanner())
+    yield app, parts
+    for opened in (*app.extensions[OPENED], parts.store):
+        opened.close()
 
 
 @pytest.fixture(scope="module")
@@ -322,7 +324,7 @@ def ask(http: FlaskClient, route: str, ids: Mapping[str, str], headers: dict[str
     """Ask a route about ids, saying enough to be looked at."""
     method, _, path = route.partition(" ")
     for name, one in ids.items():
-        path = path.replace(f"<{name}>", one)
+        path = re.sub(rf"<(?:\w+:)?{name}>", one, path)
     path = re.sub(r"<(?:\w+:)?\w+>", "1", path)
     more: dict[str, Any] = {} if method in ("GET", "DELETE") else {"json": BODIES.get(route, {})}
     return http.open(path, method=method, headers=headers, **more)

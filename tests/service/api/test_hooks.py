@@ -18,8 +18,8 @@ from service.access.scopes import Scope
 from service.api.asking import guard
 from service.api.failures import answer_failures
 from service.api.hooks import hook_routes
-from service.hooks.keeping import MOST_HOOKS
 from service.hooks.telling import deliver_due
+from service.limits import HOOK_LIMITS
 from service.moments import utc_now
 from service.orders.states import EventType
 from service.parts import Parts
@@ -130,7 +130,7 @@ def test_a_hook_that_says_little_is_told_everything(bellgrove: Caller) -> None:
         ({"url": URL, "types": []}, "/types", "List should have at least 1 item"),
         ({"url": URL, "types": ["order.ready", "order.lost"]}, "/types/1", "Input should be 'order.received'"),
         ({"url": URL, "types": ["hook.test"]}, "/types/0", "Input should be 'order.received'"),
-        ({"url": URL, "for_all_orders": "yes"}, "/for_all_orders", "Input should be a valid boolean"),
+        ({"url": URL, "for_all_orders": "yes"}, "/for_all_orders", "true or false is needed, got 'yes'"),
         ({"url": URL, "secret": "whsec_mine"}, "/secret", "no such field; remove it or check its spelling"),
     ],
 )
@@ -168,7 +168,7 @@ def test_making_a_hook_again_makes_no_two_and_tells_which_there_is(bellgrove: Ca
 
 def test_there_are_as_many_hooks_as_there_may_be(parts: Parts) -> None:
     caller = Caller(app_of(parts), parts, Scope.ORDER, Scope.READ)
-    for number in range(MOST_HOOKS):
+    for number in range(HOOK_LIMITS.per_owner):
         caller.made(url=f"https://shop.example/{number}")
 
     problem = problem_of(caller("POST", "/v1/hooks", {"url": URL}), "too-many-hooks")

@@ -123,7 +123,7 @@ def test_keys_are_listed_in_pages(any_parts: Parts, http: FlaskClient) -> None:
     [
         ("limit=0", "limit is '0': Input should be greater than or equal to 1"),
         ("limit=501", "limit is '501': Input should be less than or equal to 500"),
-        ("limit=many", "limit is 'many': Input should be a valid integer"),
+        ("limit=many", "limit is 'many': a whole number is needed"),
         ("after=%00", "after is "),
         ("limit=1&limit=2", "the parameter limit comes 2 times; give it once"),
         ("before=x", "there is no parameter called 'before' here; known are after, limit"),
@@ -148,9 +148,9 @@ def test_a_page_that_cannot_be_asked_for(parts: Parts, query: str, detail: str) 
         ('{"title": " ", "scopes": ["read"]}', "/title", "a title is 1 to 200 characters"),
         ('{"title": "a\\nb", "scopes": ["read"]}', "/title", "a title is 1 to 200 characters"),
         ('{"title": "\\ud800", "scopes": ["read"]}', "/title", "is half a character"),
-        ('{"title": {"value": "x"}, "scopes": ["read"]}', "/title/value", "valid number"),
+        ('{"title": {"value": "x"}, "scopes": ["read"]}', "/title/value", "a number is needed"),
         ('{"title": {"value": 5}, "scopes": ["read"]}', "/title", "a plain value is needed, got an object"),
-        ('{"title": "x", "scopes": ["read"], "is_test": 1}', "/is_test", "valid boolean"),
+        ('{"title": "x", "scopes": ["read"], "is_test": 1}', "/is_test", "true or false is needed, got 1"),
         ('{"title": "x", "scopes": ["read"], "colour": 1}', "/colour", "no such field; remove it"),
         ("[]", "", "a JSON object is needed"),
         ("{", "", "not JSON"),
@@ -232,3 +232,15 @@ def test_a_browser_makes_a_key_with_its_token(parts: Parts) -> None:
     problem_of(http.post("/v1/keys", json={"title": "x", "scopes": ["read"]}), "write-not-vouched")
 
     assert made(http, {"X-CSRF-Token": token})["title"] == "web shop"
+
+
+@pytest.mark.parametrize("method", ["DELETE", "PUT", "PATCH", "POST"])
+def test_the_key_that_asks_can_be_read_and_nothing_else(http: FlaskClient, any_parts: Parts, method: str) -> None:
+    headers = bearing(new_key(any_parts, *Scope))
+
+    answer = http.open("/v1/keys/me", method=method, headers=headers)
+    options = http.options("/v1/keys/me", headers=headers)
+
+    problem_of(answer, "method-not-allowed")
+    for told in (answer, options):
+        assert set(told.headers["Allow"].split(", ")) == {"GET", "HEAD", "OPTIONS"}

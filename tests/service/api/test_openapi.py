@@ -188,3 +188,75 @@ def test_a_request_without_an_id_that_is_safe_in_a_log_gets_one(app: Flask, stra
         assert re.fullmatch("req_[0-9a-f]{24}", answer.headers[FIELD])
         assert (answer.json or {})["request_id"] == answer.headers[FIELD]
     assert made[0].headers[FIELD] != made[1].headers[FIELD]
+
+
+# Objects that may hold members the document does not name, each with its reason.
+OPEN = {
+    "ApiDocument": "OpenAPI 3.1 says what such a document holds",
+    "SchemaAnswer": "the dialect that it names says what a schema holds",
+    "Problem": "RFC 9457 section 3.2: kinds of problems have members of their own, to be ignored where not known",
+}
+
+
+def loose_in(value: Any, place: str) -> Iterator[str]:
+    """Where a schema says no more than that something is there."""
+    if isinstance(value, list):
+        for number, part in enumerate(value):
+            yield from loose_in(part, f"{place}/{number}")
+    if not isinstance(value, dict):
+        return
+    names = value.keys() & {"properties", "patternProperties"}
+    says_what_it_holds = any(value[name] for name in names) or value.get("additionalProperties") not in (None, True, {})
+    if value.get("type") == "object" and (not says_what_it_holds or value.get("additionalProperties") is True):
+        yield place
+    if value.get("type") == "array" and not value.get("items") and not value.get("prefixItems"):
+        yield place
+    for name, part in value.items():
+        if part == {} and name in ("schema", "items", "additionalProperties"):
+            yield f"{place}/{name}"
+        if name not in ("default", "example", "examples", "const", "enum"):
+            yield from loose_in(part, f"{place}/{name}")
+
+
+def test_every_object_is_described_member_by_member(document: Any) -> None:
+    schemas = document["components"]["schemas"]
+    of_schemas = {place.split("/")[1] for place in loose_in(schemas, "")}
+
+    assert of_schemas == OPEN.keys()
+    assert list(loose_in({name: part for name, part in document.items() if name != "components"}, "")) == []
+
+
+@pytest.mark.parametrize(
+    "schema",
+    [
+        {"type": "object"},
+        {"type": "object", "properties": {}},
+        {"type": "object", "additionalProperties": True},
+        {"type": "array"},
+        {"type": "array", "items": {}},
+        {"anyOf": [{"type": "object", "properties": {"a": {"type": "object"}}}]},
+    ],
+)
+def test_what_is_described_loosely_is_found(schema: Any) -> None:
+    assert len(list(loose_in(schema, ""))) >= 1
+
+
+def test_every_problem_says_what_to_do_and_whether_to_try_again(app: Flask) -> None:
+    told = app.test_client().get("/problems").json
+
+    assert told is not None
+    assert {one["type"].rpartition("/")[2] for one in told["problems"]} == PROBLEMS.keys()
+    for one in told["problems"]:
+        assert isinstance(one["try_again"], bool), one
+        assert one["what_to_do"].strip(), one
+
+
+def test_every_answer_is_told_with_its_request_id(document: Any) -> None:
+    silent = [
+        f"{name} {status}"
+        for name, operation in operations_in(document)
+        for status, answer in operation["responses"].items()
+        if "Request-Id" not in answer.get("headers", {})
+    ]
+
+    assert [one for one in silent if not one.endswith(" 414")] == []  # told by the web server itself

@@ -442,6 +442,18 @@ def test_a_client_waits_until_its_order_is_planned(shop: Shop) -> None:
     assert answer.headers["Preference-Applied"] == "wait=20"
 
 
+@pytest.mark.parametrize(
+    ("asked", "applied"),
+    [("wait=999999999999", "30"), ("WAIT = 31", "30"), ("wait=0007", "7"), ("wait=" + 5000 * "9", "30")],
+)
+def test_a_wait_is_cut_to_the_longest_there_is_and_the_answer_says_so(shop: Shop, asked: str, applied: str) -> None:
+    order_id = shop.ready()  # it is decided, so that nothing is waited for
+
+    answer = shop.http.get(f"/v1/orders/{order_id}", headers={**shop.web, "Prefer": asked})
+
+    assert answer.headers["Preference-Applied"] == f"wait={applied}"
+
+
 def test_a_client_that_has_the_newest_is_told_so_after_its_wait(shop: Shop) -> None:
     order_id = shop.placed()
     tag = shop.http.get(f"/v1/orders/{order_id}", headers=shop.web).headers["ETag"]
