@@ -102,9 +102,70 @@ class Limits:
     )
 
     def told(self) -> tuple[Limit, ...]:
-        """Every limit: those of reading a tune, of sheet jobs, then these, in the order of the fields."""
+        """Every limit: of reading a tune, of sheet jobs, these, and of hooks, in the order of the fields."""
         # The computation takes a second to import, and is needed here only for what it limits itself.
         from layout.sheet_walk import LIMITS_OF_SHEETS  # noqa: PLC0415
         from layout.walk import LIMITS_OF_READING  # noqa: PLC0415
 
-        return LIMITS_OF_READING + LIMITS_OF_SHEETS + limits_told(self)
+        return LIMITS_OF_READING + LIMITS_OF_SHEETS + limits_told(self) + limits_told(HOOK_LIMITS, prefix="hook_")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class HookLimits:
+    """The limits of hooks; /v1/limits lists them under the names of the fields, with hook_ before.
+
+    "The specification" is Standard Webhooks 1.0.0.
+    """
+
+    url_characters: int = limit(2000, "characters", "longest URL of a hook: what every browser and server takes")
+    per_owner: int = limit(
+        50, "hooks", "most hooks of an owner, those for tests apart: every event of an order is written for each"
+    )
+    body_bytes: int = limit(
+        20_000, "bytes", "a message stays below it: the specification's 20 kB, section Payload size"
+    )
+    lookup_s: int = limit(
+        5,
+        "seconds",
+        "longest that a host's name is looked up: after it resolvers ask the next server (resolv.conf)",
+    )
+    connect_s: int = limit(
+        5, "seconds", "longest wait for the host to pick up; one that has not by then will hardly take a message"
+    )
+    addresses: int = limit(
+        3, "addresses", "of a host, tried one after another where nobody picks up, all within the time of one try"
+    )
+    answer_bytes: int = limit(4096, "bytes", "read of an answer's body; it decides nothing, so the rest is left")
+    jitter_percent: int = limit(
+        10, "%", "of a wait, added to it by chance, so that what failed together does not come back together"
+    )
+    retry_after_s: int = limit(
+        86_400, "seconds", "longest wait that a hook may ask for by Retry-After: the longest the specification has"
+    )
+    quiet_s: int = limit(
+        30, "seconds", "how long a hook that is overrun gets nothing, where it names no time itself: common practice"
+    )
+    lease_beyond_s: int = limit(
+        60, "seconds", "beyond the time of a try that a message is one process's: to look up the name, and to write"
+    )
+    tolerance_s: int = limit(
+        300, "seconds", "how far a message's time may be from its receiver's: five minutes are common practice"
+    )
+    secrets_before: int = limit(
+        4, "secrets", "rotated secrets that still sign; more would only lengthen the header field"
+    )
+    look_every_s: int = limit(1, "seconds", "how often is looked for messages, and so how late one may be")
+    at_a_time: int = limit(32, "messages", "that one process sends at a time: each waits for others most of its time")
+    per_hook_at_a_time: int = limit(4, "messages", "of them to one hook, so that others are told too")
+    per_late_hook_at_a_time: int = limit(
+        1, "messages", "of them to one that did not take its last message: it may hang, and shall hold nobody up"
+    )
+    hooks_per_look: int = limit(
+        200, "hooks", "with something due that one look finds; there are few more, and the next look follows at once"
+    )
+    stop_percent: int = limit(
+        50, "%", "of the time to stop, for messages on their way; after it the lease lets another process send them"
+    )
+
+
+HOOK_LIMITS = HookLimits()

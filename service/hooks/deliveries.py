@@ -10,9 +10,8 @@ from sqlalchemy import Select, delete, func, or_, select, update
 from sqlalchemy.orm import Session
 
 from service.hooks.outbox import DELIVERED, FAILED, WAITING
+from service.limits import HOOK_LIMITS
 from service.store.tables import Delivery, Hook
-
-MOST_LOOKED_AT = 200  # hooks with something due in one look; there are few more, and the next look follows at once
 
 
 class DeliveryUnknownError(Exception):
@@ -156,7 +155,7 @@ def due(session: Session, *, now: datetime, room: Mapping[str, int], usual: int,
         select(Hook.id)
         .where(or_(Hook.quiet_until.is_(None), Hook.quiet_until <= now), Hook.id.not_in(full), first <= now)
         .order_by(first)
-        .limit(MOST_LOOKED_AT)
+        .limit(HOOK_LIMITS.hooks_per_look)
     ).all()
     queues = [session.scalars(_due_of(hook_id, now, room.get(hook_id, usual))).all() for hook_id in hooks[:most]]
     return _in_turn(queues)[:most]

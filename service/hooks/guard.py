@@ -10,13 +10,15 @@ IANA's registries of special-purpose addresses, RFC 6890 and its updates.
 import ipaddress
 import re
 import socket
+import threading
 from collections.abc import Callable, Sequence
+from concurrent.futures import Future, wait
 from dataclasses import dataclass
 from urllib.parse import SplitResult, urlsplit
 
+from service.limits import HOOK_LIMITS
 from service.variables import Network
 
-MOST_URL_CHARACTERS = 2000  # as the table holds
 MOST_NAME_CHARACTERS = 253  # RFC 1035, section 2.3.4: 255 octets with their counts
 MOST_PORT = 65_535
 DEFAULT_PORTS = {"https": 443, "http": 80}
@@ -98,8 +100,8 @@ def read_url(url: str, rules: Rules) -> Target:
     Raises:
         UrlError: It is not a plain http or https URL, or its host is an address that hooks must not reach.
     """
-    if not url or len(url) > MOST_URL_CHARACTERS:
-        raise UrlError(f"the URL has {len(url)} characters; from 1 to {MOST_URL_CHARACTERS} are taken")
+    if not url or len(url) > HOOK_LIMITS.url_characters:
+        raise UrlError(f"the URL has {len(url)} characters; from 1 to {HOOK_LIMITS.url_characters} are taken")
     if not re.fullmatch(r"[!-~]+", url) or "\\" in url:
         raise UrlError("the URL holds a blank, a backslash or a letter outside ASCII; write names as xn--… and percent")
     try:
@@ -125,7 +127,7 @@ def read_url(url: str, rules: Rules) -> Target:
 
 
 def checked_addresses(target: Target, rules: Rules, *, resolve: Resolver) -> tuple[str, ...]:
-    """The addresses that a target has at this moment, every one of them allowed.
+    """The addresses that a target has at this moment, every one of them allowed; within the limit's time.
 
     Args:
         target: Where to.
@@ -139,7 +141,7 @@ def checked_addresses(target: Target, rules: Rules, *, resolve: Resolver) -> tup
         found = [str(target.literal)]
     else:
         try:
-            found = list(resolve(target.host, target.port))
+            found = _looked_up(target, resolve)
         except (OSError, UnicodeError) as fault:
             raise AddressRefusedError("the host's name cannot be looked up") from fault
     if not found:
@@ -152,6 +154,27 @@ def checked_addresses(target: Target, rules: Rules, *, resolve: Resolver) -> tup
         if not allowed:
             raise AddressRefusedError("the host's name leads to an address that is not public")
     return tuple(dict.fromkeys(found))
+
+
+def _looked_up(target: Target, resolve: Resolver) -> list[str]:
+    """The addresses of a name. Looking one up cannot be broken off, so one that hangs is left behind.
+
+    Raises:
+        AddressRefusedError: It took too long.
+    """
+    looked_up: Future[list[str]] = Future()
+
+    def look_up() -> None:
+        try:
+            looked_up.set_result(list(resolve(target.host, target.port)))
+        except Exception as fault:  # noqa: BLE001 -- it is raised where it is waited for
+            looked_up.set_exception(fault)
+
+    threading.Thread(target=look_up, name=f"look up {target.host}", daemon=True).start()
+    # Not by the future's own timeout: the resolver may raise that very error itself.
+    if not wait((looked_up,), HOOK_LIMITS.lookup_s).done:
+        raise AddressRefusedError(f"the host's name was not looked up within {HOOK_LIMITS.lookup_s} s")
+    return looked_up.result()
 
 
 def is_allowed(address: Address, networks: Sequence[Network]) -> bool:

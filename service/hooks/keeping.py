@@ -12,11 +12,10 @@ from service.hooks.deliveries import DeliveryTold, Holder, check_on, delivery_to
 from service.hooks.outbox import write_test
 from service.hooks.sending import give_up_waiting
 from service.hooks.signing import first_secrets, rotated
+from service.limits import HOOK_LIMITS
 from service.store.columns import EPOCH, MICROSECOND
 from service.store.ids import new_id
 from service.store.tables import Hook, Owner
-
-MOST_HOOKS = 50  # of one owner, those for tests apart: every event of an order is written for each of them
 
 
 class HookUnknownError(Exception):
@@ -108,8 +107,8 @@ def add_hook(session: Session, holder: Holder, wish: HookWish, *, now: datetime)
     session.execute(select(Owner.id).where(Owner.id == holder.owner_id).with_for_update(key_share=True))
     _check_new(session, holder, wish.url)
     count = session.scalar(select(func.count()).select_from(Hook).where(*_held(holder)))
-    if count is not None and count >= MOST_HOOKS:
-        raise TooManyHooksError(f"there are {count} hooks; {MOST_HOOKS} are the most")
+    if count is not None and count >= HOOK_LIMITS.per_owner:
+        raise TooManyHooksError(f"there are {count} hooks; {HOOK_LIMITS.per_owner} are the most")
     hook = Hook(
         id=new_id("hook", now),
         owner_id=holder.owner_id,

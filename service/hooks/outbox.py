@@ -12,11 +12,11 @@ from sqlalchemy import Select, or_, select
 from sqlalchemy.orm import Session
 
 from service.hooks.types import TEST_TYPE
+from service.limits import HOOK_LIMITS
 from service.moments import moment_text
 from service.store.ids import new_id
 from service.store.tables import Delivery, Event, Hook, Order, Owner
 
-BODY_BYTES = 20_000  # a message stays below 20 kB (Standard Webhooks 1.0.0, section "Payload size")
 WAITING, DELIVERED, FAILED = "waiting", "delivered", "failed"  # states of a delivery
 
 
@@ -94,7 +94,7 @@ def message(kind: str, *, at: datetime, data: dict[str, Any]) -> str:
     """
     told = {"type": kind, "timestamp": moment_text(at), "data": data}
     body = _compact(told)
-    if len(body) < BODY_BYTES:
+    if len(body) < HOOK_LIMITS.body_bytes:
         return body
     return _compact({**told, "data": {**data, "data": None, "data_left_out": True}})
 

@@ -15,10 +15,7 @@ from urllib3.connection import HTTPConnection, HTTPSConnection
 from urllib3.exceptions import ConnectTimeoutError, HTTPError, NewConnectionError
 
 from service.hooks.guard import Target
-
-CONNECT_S = 5.0  # s; a machine that does not pick up by then will hardly take a message
-MOST_ADDRESSES = 3  # tried one after another where nobody picks up, all within the same time
-BODY_READ_BYTES = 4096  # of an answer's body; it decides nothing, so the rest is left
+from service.limits import HOOK_LIMITS
 
 
 class PostError(Exception):
@@ -66,7 +63,7 @@ def post(target: Target, addresses: Sequence[str], message: Message, *, tls: ssl
     """
     with _Deadline(within_s) as deadline:
         try:
-            connection = _connected(target, addresses[:MOST_ADDRESSES], tls, deadline)
+            connection = _connected(target, addresses[: HOOK_LIMITS.addresses], tls, deadline)
             try:
                 return _asked(connection, target, message, deadline)
             finally:
@@ -145,7 +142,7 @@ def _connected(target: Target, addresses: Sequence[str], tls: ssl.SSLContext, de
     fault: HTTPError | None = None
     for address in addresses:
         connection: _Plain | _Secure
-        wait_s = min(CONNECT_S, deadline.left_s())
+        wait_s = min(HOOK_LIMITS.connect_s, deadline.left_s())
         if target.scheme == "https":
             connection = _Secure(address, target.port, timeout=wait_s, ssl_context=tls, server_hostname=target.host)
         else:
@@ -175,7 +172,7 @@ def _asked(connection: HTTPConnection, target: Target, message: Message, deadlin
         raise TimeoutError  # the head was cut, which reads as its end
     with suppress(http.client.HTTPException, OSError, ValueError):
         # The status was said: a body that breaks off takes nothing back.
-        response.read(BODY_READ_BYTES)
+        response.read(HOOK_LIMITS.answer_bytes)
     return Answer(status=response.status, retry_after=response.headers.get("Retry-After"))
 
 

@@ -31,6 +31,7 @@ from service.hooks.guard import (
 from service.hooks.outbox import DELIVERED, FAILED, WAITING
 from service.hooks.posting import Answer, Message, PostError, post
 from service.hooks.signing import signed_headers, valid_secrets
+from service.limits import HOOK_LIMITS
 from service.parts import Parts
 from service.store.tables import Delivery, Hook, Owner
 
@@ -39,12 +40,8 @@ log = logging.getLogger("discwright")
 # Waits between tries, as Standard Webhooks 1.0.0 proposes them (section "Deliverability and reliability"): at once,
 # then after 5 s, 5 min, 30 min, 2 h, 5 h, 10 h, 14 h, 20 h and 24 h; three days in all.
 WAITS = tuple(timedelta(seconds=s) for s in (0, 5, 300, 1800, 7200, 18_000, 36_000, 50_400, 72_000, 86_400))
-MOST_JITTER = 0.1  # of a wait, added to it: so that what failed together does not come back together
-MOST_RETRY_AFTER = timedelta(hours=24)  # the longest wait there is
-QUIET = timedelta(seconds=30)  # how long a hook that is overrun gets nothing where it names no time itself
 # "The receiver is overloaded" in the specification's words; 503 says so where it names a time.
 OVERRUN = (HTTPStatus.TOO_MANY_REQUESTS, HTTPStatus.BAD_GATEWAY, HTTPStatus.GATEWAY_TIMEOUT)
-LEASE_BEYOND = timedelta(seconds=60)  # for looking the name up, and for writing the result
 TURNED_OFF = "the hook is turned off"
 
 
@@ -158,7 +155,7 @@ def take(session: Session, delivery_id: str, *, now: datetime, lease: timedelta)
 
 def lease_of(parts: Parts) -> timedelta:
     """How long a message is one process's: longer than sending it can take."""
-    return timedelta(seconds=parts.settings.hooks.timeout_s) + LEASE_BEYOND
+    return timedelta(seconds=parts.settings.hooks.timeout_s + HOOK_LIMITS.lease_beyond_s)
 
 
 def send(parts: Parts, taken: Taken, ways: Ways) -> Result:
@@ -253,14 +250,14 @@ def retry_after(text: str | None, *, now: datetime) -> timedelta | None:
         return None
     text = text.strip()
     if text.isascii() and text.isdigit():
-        asked = timedelta(seconds=min(int(text[:9]), int(MOST_RETRY_AFTER.total_seconds())))
+        asked = timedelta(seconds=min(int(text[:9]), HOOK_LIMITS.retry_after_s))
     else:
         try:
             named = parsedate_to_datetime(text)
         except ValueError:
             return None
         asked = (named if named.tzinfo else named.replace(tzinfo=UTC)) - now
-    return max(timedelta(0), min(asked, MOST_RETRY_AFTER))
+    return max(timedelta(0), min(asked, timedelta(seconds=HOOK_LIMITS.retry_after_s)))
 
 
 def _tried(parts: Parts, taken: Taken, ways: Ways) -> Result:
@@ -294,7 +291,7 @@ def _next_wait(taken: Taken, result: Result, *, now: datetime, jitter: float) ->
     gone = result.answer is not None and result.answer.status == HTTPStatus.GONE
     if result.is_success or gone or taken.is_test or taken.tries >= len(WAITS):
         return None
-    wait = WAITS[taken.tries] * (1 + MOST_JITTER * jitter)
+    wait = WAITS[taken.tries] * (1 + HOOK_LIMITS.jitter_percent / 100 * jitter)
     asked = None if result.answer is None else retry_after(result.answer.retry_after, now=now)
     return wait if asked is None else max(wait, asked)
 
@@ -310,5 +307,5 @@ def _heed(session: Session, taken: Taken, answer: Answer, *, now: datetime) -> N
         return
     asked = retry_after(answer.retry_after, now=now)
     if answer.status in OVERRUN or (answer.status == HTTPStatus.SERVICE_UNAVAILABLE and asked is not None):
-        until = now + (QUIET if asked is None else asked)
+        until = now + (timedelta(seconds=HOOK_LIMITS.quiet_s) if asked is None else asked)
         session.execute(same.where(or_(Hook.quiet_until.is_(None), Hook.quiet_until < until)).values(quiet_until=until))

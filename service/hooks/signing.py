@@ -14,13 +14,12 @@ from collections.abc import Mapping, Sequence
 from datetime import datetime, timedelta
 from typing import Any
 
+from service.limits import HOOK_LIMITS
 from service.store.columns import EPOCH, MICROSECOND
 
 SECRET_PREFIX = "whsec_"
 SECRET_BYTES = 32  # the specification allows 24 to 64
 VERSION = "v1"  # HMAC-SHA256 with a secret that both sides hold
-TOLERANCE = timedelta(minutes=5)  # how far a message's time may be from the receiver's: common practice
-MOST_SECRETS_BEFORE = 4  # rotated secrets that still sign; more would only lengthen the header
 
 
 class SignatureError(Exception):
@@ -65,8 +64,10 @@ def verify(headers: Mapping[str, str], body: bytes, *, secret: str, now: datetim
     if not (timestamp.isascii() and timestamp.isdigit()):
         raise SignatureError(f"the webhook-timestamp is {timestamp!r}, not seconds since 1970")
     off_s = abs(int(timestamp) - (now - EPOCH) // timedelta(seconds=1))
-    if off_s > TOLERANCE.total_seconds():
-        raise SignatureError(f"the webhook-timestamp is {off_s} s from now; at most {TOLERANCE.seconds} s are taken")
+    if off_s > HOOK_LIMITS.tolerance_s:
+        raise SignatureError(
+            f"the webhook-timestamp is {off_s} s from now; at most {HOOK_LIMITS.tolerance_s} s are taken"
+        )
     wanted = _signature(secret, message_id, timestamp, body).encode()
     for one in headers["webhook-signature"].split(" "):
         version, _, signature = one.partition(",")
@@ -92,7 +93,7 @@ def rotated(kept: Mapping[str, Any], *, now: datetime, old_valid_until: datetime
     """
     before = [{"secret": kept["current"], "until": (old_valid_until - EPOCH) // MICROSECOND}, *kept["before"]]
     valid = [one for one in before if one["until"] > (now - EPOCH) // MICROSECOND]
-    return {"current": new_secret(), "before": valid[:MOST_SECRETS_BEFORE]}
+    return {"current": new_secret(), "before": valid[: HOOK_LIMITS.secrets_before]}
 
 
 def valid_secrets(kept: Mapping[str, Any], *, now: datetime) -> tuple[str, ...]:

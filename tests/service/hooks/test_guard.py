@@ -1,5 +1,8 @@
 import ipaddress
+import threading
+import time
 from collections.abc import Sequence
+from dataclasses import replace
 
 import pytest
 from hypothesis import given
@@ -15,6 +18,7 @@ from service.hooks.guard import (
     read_url,
     system_resolver,
 )
+from service.limits import HOOK_LIMITS
 
 STRICT = Rules()
 HTTP_TOO = Rules(allow_http=True)
@@ -153,6 +157,34 @@ def test_a_name_that_cannot_be_looked_up_is_refused() -> None:
 
     with pytest.raises(AddressRefusedError, match=r"^the host's name cannot be looked up$"):
         checked_addresses(target, STRICT, resolve=fails)
+
+
+def test_a_lookup_that_hangs_is_given_up_after_its_time(monkeypatch: pytest.MonkeyPatch) -> None:
+    assert HOOK_LIMITS.lookup_s == 5  # resolv.conf(5): the usual time after which the next name server is asked
+    monkeypatch.setattr("service.hooks.guard.HOOK_LIMITS", replace(HOOK_LIMITS, lookup_s=1))
+    target = read_url("https://shop.example/", STRICT)
+    answers_late = threading.Event()
+    begun_s = time.monotonic()
+
+    def hangs(host: str, port: int) -> Sequence[str]:
+        answers_late.wait(30)
+        return ["8.8.8.8"]
+
+    with pytest.raises(AddressRefusedError, match=r"^the host's name was not looked up within 1 s$"):
+        checked_addresses(target, STRICT, resolve=hangs)
+
+    answers_late.set()
+    assert 1 <= time.monotonic() - begun_s < 10
+
+
+def test_a_lookup_that_gave_up_by_itself_is_no_lookup_that_hangs() -> None:
+    target = read_url("https://shop.example/", STRICT)
+
+    def gives_up(host: str, port: int) -> Sequence[str]:
+        raise TimeoutError
+
+    with pytest.raises(AddressRefusedError, match=r"^the host's name cannot be looked up$"):
+        checked_addresses(target, STRICT, resolve=gives_up)
 
 
 def test_a_name_is_looked_up_once() -> None:

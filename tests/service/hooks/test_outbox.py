@@ -5,8 +5,8 @@ from sqlalchemy import select
 
 from service.hooks.deliveries import Holder
 from service.hooks.keeping import delete_hook
-from service.hooks.outbox import BODY_BYTES
 from service.hooks.types import MEANINGS, ORDER_TYPES, TEST_TYPE
+from service.limits import HOOK_LIMITS
 from service.orders.states import EventType
 from service.parts import Parts
 from service.store.tables import Delivery, Hook
@@ -159,7 +159,7 @@ def test_data_too_long_for_a_message_is_left_out_and_it_says_so(any_parts: Parts
         tell_of(session, new_order(owner), EventType.RECEIVED, reason="ä" * 4000)  # 6 bytes each as JSON in ASCII
 
     body = only_delivery(any_parts).body
-    assert len(body.encode()) < BODY_BYTES == 20_000
+    assert len(body.encode()) < HOOK_LIMITS.body_bytes == 20_000
     assert json.loads(body)["data"]["data"] is None
     assert json.loads(body)["data"]["data_left_out"] is True
 

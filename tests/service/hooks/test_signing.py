@@ -7,7 +7,6 @@ from hypothesis import strategies as st
 from standardwebhooks import Webhook, WebhookVerificationError
 
 from service.hooks.signing import (
-    MOST_SECRETS_BEFORE,
     SignatureError,
     first_secrets,
     new_secret,
@@ -16,6 +15,7 @@ from service.hooks.signing import (
     valid_secrets,
     verify,
 )
+from service.limits import HOOK_LIMITS
 
 NOW = datetime(2025, 12, 2, 10, 0, 0, 250_000, tzinfo=UTC)
 DAY = timedelta(days=1)
@@ -91,7 +91,7 @@ def test_a_few_old_secrets_sign_and_no_more() -> None:
     for _ in range(10):
         kept = rotated(kept, now=NOW, old_valid_until=NOW + DAY)
 
-    assert len(valid_secrets(kept, now=NOW)) == 1 + MOST_SECRETS_BEFORE
+    assert len(valid_secrets(kept, now=NOW)) == 1 + HOOK_LIMITS.secrets_before
 
 
 def test_a_message_of_the_reference_library_is_verified() -> None:

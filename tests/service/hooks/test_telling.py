@@ -10,7 +10,8 @@ from dataclasses import replace
 from pathlib import Path
 
 from service.hooks.deliveries import count_deliveries
-from service.hooks.telling import MOST_PER_HOOK, tell_hooks
+from service.hooks.telling import tell_hooks
+from service.limits import HOOK_LIMITS
 from service.parts import Parts
 from service.settings import WorkSettings
 from tests.service.conftest import environment_of
@@ -89,7 +90,7 @@ def test_hooks_that_hang_hold_up_no_others(parts: Parts) -> None:
         for _ in range(20):
             place(parts, shop)  # a hundred messages to those that hang
         with telling(parts):
-            assert becomes_true(lambda: len(hanging.got) >= 5 * MOST_PER_HOOK)
+            assert becomes_true(lambda: len(hanging.got) >= 5 * HOOK_LIMITS.per_hook_at_a_time)
             make_hook(parts, shop, receiver.url)
             started = time.monotonic()
             for _ in range(10):
@@ -99,7 +100,7 @@ def test_hooks_that_hang_hold_up_no_others(parts: Parts) -> None:
             at_a_time = Counter(got.path for got in hanging.got)
             never.set()
 
-    assert set(at_a_time.values()) == {MOST_PER_HOOK}
+    assert set(at_a_time.values()) == {HOOK_LIMITS.per_hook_at_a_time}
 
 
 def test_a_hook_gets_a_few_messages_at_a_time(parts: Parts) -> None:
@@ -123,7 +124,7 @@ def test_a_hook_gets_a_few_messages_at_a_time(parts: Parts) -> None:
         with telling(parts):
             assert becomes_true(lambda: counts(parts)["delivered"] == 16)
 
-    assert 1 < most[0] <= MOST_PER_HOOK
+    assert 1 < most[0] <= HOOK_LIMITS.per_hook_at_a_time
 
 
 def test_told_to_stop_it_ends_in_time_though_a_hook_hangs_and_the_message_goes_out_later(parts: Parts) -> None:
