@@ -204,7 +204,7 @@ def customer_says(store: Store, order_id: str, revision: int, verdict: str, *, b
     """
 
     def saying(session: Session) -> OrderView:
-        order = session.get(Order, order_id)
+        order = session.get(Order, order_id, with_for_update=True)
         waits = order is not None and order.state in (State.READY, State.ATTENTION)
         if order is None or not waits or order.plan_revision != revision:
             raise StateForbidsError("this proof is not the one to decide about any more; ask for a new link")
@@ -229,7 +229,7 @@ def _decide(
     store: Store, asker: Asker, seen: Seen, decide: Callable[[Session, Order, datetime], None], also: Also
 ) -> OrderView:
     def deciding(session: Session) -> OrderView:
-        order = order_row(session, asker, seen.order_id)
+        order = order_row(session, asker, seen.order_id, to_decide=True)
         if seen.version not in (None, order.version):
             raise ChangedMeanwhileError(f"the order is at version {order.version}, not {seen.version}; read it again")
         if order.erased_at is not None:

@@ -49,7 +49,7 @@ def erase_order(store: Store, files: FileStore, asker: Asker, order_id: str) -> 
     files.note(order_id)
     try:
         with store.writing() as session:
-            order = order_row(session, asker, order_id)
+            order = order_row(session, asker, order_id, to_decide=True)
             _check_finished(order.state)
             if order.erased_at is None:
                 _erase(session, order, State(order.state), store.now(session))

@@ -39,13 +39,21 @@ class Place:
     order_id: str
 
 
-def order_row(session: Session, asker: Asker, order_id: str) -> Order:
+def order_row(session: Session, asker: Asker, order_id: str, *, to_decide: bool = False) -> Order:
     """The row of an order that exists for an asker.
+
+    Args:
+        session: A transaction.
+        asker: Who asks.
+        order_id: Which order.
+        to_decide: Whether it is kept from others until the transaction ends. Of two decisions at a time the second
+            then sees what the first made of the order, and is answered for that, on every database alike.
 
     Raises:
         OrderUnknownError: There is none, or it is another's.
     """
-    order = session.scalars(_seen_by(asker, select(Order)).where(Order.id == order_id)).one_or_none()
+    rows = _seen_by(asker, select(Order)).where(Order.id == order_id)
+    order = session.scalars(rows.with_for_update(of=Order) if to_decide else rows).one_or_none()
     if order is None:
         raise OrderUnknownError(f"there is no order {order_id[:64]!r}")
     return order
