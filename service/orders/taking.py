@@ -5,6 +5,7 @@ worker that slept past its lease can do no harm: its result changes no row and i
 twice is only waste, for planning gives the same bytes every time.
 """
 
+import secrets
 from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import datetime, timedelta
@@ -67,11 +68,14 @@ def take(store: Store, order_id: str, *, worker: str, lease_s: float, most_attem
     Returns:
         None where there is nothing to do: another holds it, it is planned already, or it failed just now.
     """
+    mine = f"{worker}:{secrets.token_hex(4)}"  # apart from what this worker's other slots take
 
     def taking(session: Session) -> Taken | None:
         order = session.get(Order, order_id)
         if order is None:
             return None
+        if order.state == State.PLANNING and order.taken_by == mine:  # the connection was lost after the commit
+            return _taken(order)
         now = store.now(session)
         lost = order.state == State.PLANNING and order.lease_until is not None and order.lease_until <= now
         if order.state != State.RECEIVED and not lost:
@@ -83,7 +87,7 @@ def take(store: Store, order_id: str, *, worker: str, lease_s: float, most_attem
             return None
         columns = {
             "attempt": order.attempt + 1,
-            "taken_by": worker,
+            "taken_by": mine,
             "lease_until": now + timedelta(seconds=lease_s),
             "killed": killed,
         }
