@@ -71,7 +71,7 @@ class PlaceSettings:
         url_of("http", "https"),
         "how the service is reached from outside, for the links it hands out",
         default=None,
-        shown="as the request says",
+        shown="links name this machine where the request does, else no host",
     )
     secret: str | None = variable(
         "DISCWRIGHT_SECRET",

@@ -245,11 +245,12 @@ def _rates(settings: ServiceSettings) -> Iterator[Remark]:
 def _reached(settings: ServiceSettings) -> Iterator[Remark]:
     access, public_url = settings.access, settings.places.public_url
     is_shared = not settings.database_url.startswith("sqlite")
-    if public_url is None and is_shared:
+    if public_url is None and (is_shared or not access.listens_on_loopback):
         yield _advice(
             "public URL",
-            "proof links are made from the address a request came by, which differs from machine to machine",
-            "set DISCWRIGHT_PUBLIC_URL to how the service is reached from outside",
+            "how the service is reached from outside is not known, so proof links name no host, whatever the header "
+            "Host of a request says; they are whole for requests to this machine's own names alone",
+            "set DISCWRIGHT_PUBLIC_URL to how customers reach the service, unless only this machine uses it",
         )
     elif public_url is not None and access.listens_on_loopback and access.open_layouts is None:
         yield _wrong(

@@ -19,6 +19,7 @@ from service.api.operations import orders
 from service.api.order_answers import order_given
 from service.api.orders import Send
 from service.api.problems import ProblemError
+from service.api.public_links import public_link
 from service.api.request_models import read_text
 from service.orders.deciding import Release, Seen, cancel_order, release_order, replan_order, report_on_order
 from service.orders.finding import find_order
@@ -84,10 +85,8 @@ def decision_routes(parts: Parts, send: Send, links: ProofLinks) -> Blueprint:
             )
         text = links.make(Proof(order_id=order.id, revision=order.plan_revision))
         address = url_for("proofs.show", text=text)
-        if not (parts.settings.places.public_url or request.host):
-            raise ProblemError(name="request-malformed", detail="the header Host names no host to link to")
-        base = parts.settings.places.public_url or request.host_url
-        return json_response({"href": base.rstrip("/") + address, "revision": order.plan_revision}, status=201)
+        href = public_link(request, address, parts.settings.places.public_url)
+        return json_response({"href": href, "revision": order.plan_revision}, status=201)
 
     return routes
 

@@ -20,7 +20,10 @@ class VerdictBody(Part):
 class ProofLinkAnswer(Part):
     """A link to a proof."""
 
-    href: str = Field(description="to be handed to the customer")
+    href: str = Field(
+        description="to be handed to the customer; begins with a slash where the service does not know how it is "
+        "reached from outside: resolve it against the address by which customers reach it"
+    )
     revision: int = Field(description="of the plan it shows")
 
 

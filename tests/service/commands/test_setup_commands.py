@@ -72,7 +72,7 @@ def test_a_setup_that_is_right_is_told_so(
 
     assert (code, told["in_order"]) == (0, True)
     about = {one["about"]: one["level"] for one in told["remarks"]}
-    assert about.pop("rates") == about.pop("keys") == "advice"
+    assert about.pop("rates") == about.pop("keys") == about.pop("public URL") == "advice"
     assert set(about.values()) == {"good"}
     assert {"database", "queue", "store of files", "secret", "data folder"} <= set(about)
     assert not list((tmp_path / "data").glob(".probe*"))
@@ -171,6 +171,16 @@ def test_a_clock_that_is_minutes_off_is_wrong(
 
     assert "90.0 s apart" in remarks(tmp_path, DATABASE_URL=empty_database)["clock"].told
     assert "clock" in wrong(tmp_path, DATABASE_URL=empty_database)
+
+
+def test_a_service_that_does_not_know_how_it_is_reached_is_told_that_its_links_name_no_host(tmp_path: Path) -> None:
+    advice = remarks(tmp_path)["public URL"]
+
+    assert advice.level is Level.ADVICE
+    assert "proof links name no host, whatever the header Host of a request says" in advice.told
+    assert "set DISCWRIGHT_PUBLIC_URL to how customers reach the service" in advice.remedy
+    assert "public URL" not in remarks(tmp_path, DISCWRIGHT_PUBLIC_URL="https://discs.example.com")
+    assert "public URL" not in remarks(tmp_path, DISCWRIGHT_ON_LOOPBACK="yes")
 
 
 def test_layouts_open_behind_a_public_address_are_wrong(tmp_path: Path) -> None:
