@@ -9,6 +9,11 @@ from layout.documents.sheets import SheetJob
 from layout.sheets import arrange_on_sheets
 from layout.sheets.plan import SheetPlan
 from tests.layout.sheets.jobs import faults_of_plan, job_of, jobs, sheet
+from tests.layout.sheets.test_cutting_order import (
+    assert_no_disc_is_cut_after_one_of_a_later_strip,
+    assert_the_travel_told_is_that_of_the_order,
+)
+from tests.layout.sheets.test_remnants import assert_remnants_lie_in_the_sheet_and_off_every_disc
 
 DENSEST = math.pi / math.sqrt(12)  # of equal discs in the plane: A. Thue 1910, L. Fejes Tóth 1940
 
@@ -17,27 +22,28 @@ def counts(plan: SheetPlan) -> list[int]:
     return [len(on.kind) for on in plan.sheets]
 
 
-@settings(max_examples=30, deadline=None)
-@given(jobs())
-def test_no_two_discs_overlap_and_all_lie_inside_whatever_the_sheet(job: SheetJob) -> None:
-    plan = arrange_on_sheets(job)
-
-    assert faults_of_plan(plan, job) == []
-    assert [kind.placed_count for kind in plan.kinds] == [
-        sum(int((on.kind == place).sum()) for on in plan.sheets) for place in range(len(job.discs))
-    ]
-    assert all(0 <= kind.missing_count <= kind.wanted_count for kind in plan.kinds)
-
-
-@settings(max_examples=12, deadline=None)
-@given(jobs())
-def test_equal_discs_never_fill_more_than_is_proved_possible(job: SheetJob) -> None:
-    plan = arrange_on_sheets(job)
-
+def assert_no_fuller_than_is_proved_possible(plan: SheetPlan) -> None:
     for on in plan.sheets:
         if len(set(on.radius_mm.tolist())) == 1:
             hull = shapely.Polygon(on.piece.outline_mm).convex_hull
             assert np.pi * (on.radius_mm**2).sum() <= DENSEST * hull.area
+
+
+# One property for all laws of a plan: arranging takes its time, and so each law is held against all thirty jobs.
+@settings(max_examples=30, deadline=None)
+@given(jobs())
+def test_whatever_the_job_its_plan_keeps_every_law(job: SheetJob) -> None:
+    plan = arrange_on_sheets(job)
+
+    assert faults_of_plan(plan, job) == []  # no two discs overlap and all lie inside
+    assert [kind.placed_count for kind in plan.kinds] == [
+        sum(int((on.kind == place).sum()) for on in plan.sheets) for place in range(len(job.discs))
+    ]
+    assert all(0 <= kind.missing_count <= kind.wanted_count for kind in plan.kinds)
+    assert_no_fuller_than_is_proved_possible(plan)
+    assert_remnants_lie_in_the_sheet_and_off_every_disc(plan)
+    assert_no_disc_is_cut_after_one_of_a_later_strip(plan)
+    assert_the_travel_told_is_that_of_the_order(plan)
 
 
 def test_discs_that_fill_a_strip_exactly_all_fit() -> None:

@@ -1,10 +1,8 @@
 import numpy as np
-from hypothesis import given, settings
 
-from layout.documents.sheets import SheetJob
 from layout.sheets import arrange_on_sheets
-from layout.sheets.plan import Sheet
-from tests.layout.sheets.jobs import job_of, jobs, sheet
+from layout.sheets.plan import Sheet, SheetPlan
+from tests.layout.sheets.jobs import job_of, sheet
 
 AXES = {"left": (0, 1), "right": (0, -1), "bottom": (1, 1), "top": (1, -1)}
 
@@ -20,11 +18,17 @@ def strips(on: Sheet) -> np.ndarray:
     return np.asarray(np.floor(along(on) / on.strip_mm + 1e-6))
 
 
-@settings(max_examples=12, deadline=None)
-@given(jobs())
-def test_no_disc_is_cut_after_one_of_a_later_strip(job: SheetJob) -> None:
-    for on in arrange_on_sheets(job).sheets:
+def assert_no_disc_is_cut_after_one_of_a_later_strip(plan: SheetPlan) -> None:
+    """A law of every plan; test_arranging holds it against plans of any job."""
+    for on in plan.sheets:
         assert (np.diff(strips(on)) >= 0).all()
+
+
+def assert_the_travel_told_is_that_of_the_order(plan: SheetPlan) -> None:
+    """A law of every plan; test_arranging holds it against plans of any job."""
+    for on in plan.sheets:
+        steps = [np.linalg.norm(b - a) for a, b in zip(on.centres_mm[:-1], on.centres_mm[1:], strict=True)]
+        assert abs(on.travel_mm - sum(steps)) < 1e-6
 
 
 def test_the_strips_of_a_full_sheet_are_cut_one_after_the_other() -> None:
@@ -50,11 +54,3 @@ def test_rows_are_cut_to_and_fro_without_a_detour() -> None:
 
     # twelve centres on a square grid of 100: eleven steps of one pitch is the least there can be
     assert round(plan.sheets[0].travel_mm, 6) == 1100
-
-
-@settings(max_examples=6, deadline=None)
-@given(jobs())
-def test_the_travel_told_is_that_of_the_order(job: SheetJob) -> None:
-    for on in arrange_on_sheets(job).sheets:
-        steps = [np.linalg.norm(b - a) for a, b in zip(on.centres_mm[:-1], on.centres_mm[1:], strict=True)]
-        assert abs(on.travel_mm - sum(steps)) < 1e-6
