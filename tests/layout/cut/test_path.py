@@ -1,6 +1,7 @@
 """The order of a laser's cuts: short, the same every time, and never two with a thin web between them in a row."""
 
 import math
+from functools import lru_cache
 from itertools import pairwise
 from pathlib import Path
 
@@ -27,7 +28,9 @@ DEMO_TUNE = (Path(service.demo.__file__).parent / "tune.mid").read_bytes()
 NO_PAIRS = np.zeros((0, 2), dtype=np.int64)
 
 
+@lru_cache(maxsize=8)
 def plan_of(disc: Disc) -> CutPlan:
+    """The plan of a disc; a demo disc's trip takes its time, so it is planned once for all its tests."""
     return plan_cuts(disc, title="tune", fingerprint="0123456789abcdef", not_good=None)
 
 
@@ -49,7 +52,8 @@ def travel_mm(stops_mm: FloatArray) -> float:
     return float(np.linalg.norm(np.diff(there_and_back, axis=0), axis=1).sum())
 
 
-def thin_webs(disc: Disc) -> list[tuple[int, int]]:
+@lru_cache(maxsize=8)
+def thin_webs(disc: Disc) -> tuple[tuple[int, int], ...]:
     """Pairs of openings, as places in the order, nearer than the limit: from what is drawn in the record."""
     [formed] = [entity for entity in plan_of(disc).record.entities if entity.layer == "AFTER_FORMING"]
     assert isinstance(formed, Outlines)
@@ -58,7 +62,7 @@ def thin_webs(disc: Disc) -> list[tuple[int, int]]:
     corners = (formed.points_mm[:, [0, 3]] + formed.points_mm[:, [1, 2]]) / 2 if round_mm else formed.points_mm
     shapes = np.array([shapely.MultiPoint(points).convex_hull for points in corners], dtype=np.object_)
     apart = shapely.distance(shapes[:, None], shapes[None, :]) - 2 * round_mm
-    return [(int(a), int(b)) for a, b in np.argwhere(apart < HOT_WEB_MM) if a < b]
+    return tuple((int(a), int(b)) for a, b in np.argwhere(apart < HOT_WEB_MM) if a < b)
 
 
 @pytest.fixture(scope="module", params=SHIPPED, ids=lambda movement: movement.id)

@@ -8,10 +8,12 @@ import ezdxf
 from ezdxf.document import Drawing
 
 from layout.cut import plan_cuts
-from layout.documents import Cutter, Movement
+from layout.cut.plan import CutPlan
+from layout.documents import Cutter, Movement, Settings
 from layout.documents.cutter import read_cutter
 from layout.documents.sheets import SheetJob
 from layout.sheet_walk import plan_sheets, sheet_files_of
+from layout.walk import fingerprint_of
 from layout.write import write_dxf
 from tests.layout.examples import LASER, PLAIN, disc_of
 from tests.layout.sheets.jobs import job_of
@@ -20,6 +22,7 @@ FINGERPRINT = "0123456789abcdef"
 PLUCKS = [(1, 5.0), (2, 9.0), (3, 10.0), (3, 20.0)]
 RIM_MM = PLAIN.disc.outer_diameter_mm  # 240
 Entity = tuple[Any, ...]
+_DRAWN: dict[tuple[str, tuple[tuple[str, Any], ...]], bytes] = {}
 
 
 def laser(**changes: Any) -> Cutter:
@@ -31,8 +34,11 @@ LED_IN = laser(lead_in={"length_mm": 2}, bridges={"count": 3, "width_mm": 0.6})
 
 
 def disc_dxf(cutter: Cutter = LASER, movement: Movement = PLAIN, **words: Any) -> bytes:
-    """The disc.dxf of a disc with four projections."""
-    return write_dxf(_plan(cutter, movement, words).disc, cutter)
+    """The disc.dxf of a disc with four projections, drawn once for each cutter, movement and words."""
+    drawn = fingerprint_of(b"", movement, cutter, Settings()), tuple(sorted(words.items()))
+    if drawn not in _DRAWN:
+        _DRAWN[drawn] = write_dxf(_plan(cutter, movement, words).disc, cutter)
+    return _DRAWN[drawn]
 
 
 def record_dxf() -> bytes:
@@ -40,7 +46,7 @@ def record_dxf() -> bytes:
     return write_dxf(_plan(LASER, PLAIN, {}).record, LASER)
 
 
-def _plan(cutter: Cutter, movement: Movement, words: dict[str, Any]) -> Any:
+def _plan(cutter: Cutter, movement: Movement, words: dict[str, Any]) -> CutPlan:
     asked = {"title": "Spring dance", "fingerprint": FINGERPRINT, "not_good": None} | words
     return plan_cuts(disc_of(movement, PLUCKS, cutter), **asked)
 
