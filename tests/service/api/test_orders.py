@@ -113,6 +113,17 @@ def test_a_key_used_for_another_request_is_refused(shop: Shop) -> None:
     assert told["detail"] == "the Idempotency-Key 'a-1' was used for a request that brought something else"
 
 
+def test_an_order_tried_out_with_a_key_for_tests_is_still_placed_when_it_is_meant(shop: Shop) -> None:
+    tried = shop.place(headers=shop.tests, key='"order 1001"')
+
+    meant = shop.place(key='"order 1001"')
+
+    told: list[Any] = [tried.json, meant.json]
+    assert [one["is_test"] for one in told] == [True, False]
+    listed: Any = shop.http.get("/v1/orders", headers=shop.web).json
+    assert [one["id"] for one in listed["orders"]] == [told[1]["id"]]
+
+
 def test_the_same_key_of_another_owner_is_another_key(shop: Shop) -> None:
     mine = shop.place(key='"a-1"')
     others = shop.place(headers=shop.other, key='"a-1"')
