@@ -169,7 +169,12 @@ def wait_until_none_is_open(parts: Parts, order_ids: list[str], *, within_s: flo
 
 def hold_database(parts: Parts, for_s: float) -> None:
     """Keep everyone else from writing into an SQLite database for a while."""
-    lock = sqlite3.connect(parts.settings.places.data_directory / "discwright.sqlite", isolation_level=None, timeout=60)
+    hold_database_of(parts.settings.places.data_directory.parent, for_s)
+
+
+def hold_database_of(folder: Path, for_s: float) -> None:
+    """So too, of the service whose data is in a folder."""
+    lock = sqlite3.connect(folder / "data" / "discwright.sqlite", isolation_level=None, timeout=60)
     lock.execute("BEGIN IMMEDIATE")
     time.sleep(for_s)
     lock.execute("ROLLBACK")

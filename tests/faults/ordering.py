@@ -81,13 +81,21 @@ def states(parts: Parts, order_ids: list[str]) -> Counted[str]:
     return Counted(found[order_id] for order_id in order_ids)
 
 
-def assert_planned_once(parts: Parts, order_id: str, expected: PlannedOrder) -> None:
-    """The order is ready with one plan, one event of each kind, and its files are those that `expected` names."""
+def assert_planned_once(parts: Parts, order_id: str, expected: PlannedOrder, *, ends: str = "ready") -> None:
+    """The order has one plan, one event of each kind, and its files are those that `expected` names.
+
+    Args:
+        parts: Of the shop.
+        order_id: The order.
+        expected: Its plan, made elsewhere.
+        ends: The state it ends in, ready or released.
+    """
     seen = look(parts, order_id)
-    assert (seen.state, seen.reason) == ("ready", None)
+    assert (seen.state, seen.reason) == (ends, None)
     assert [plan.revision for plan in seen.plans] == [1]
     assert seen.plans[0].told == expected.told
-    assert seen.events == ["order.received", "order.planned", "order.ready"]
+    ended = [] if ends == "ready" else [f"order.{ends}"]
+    assert seen.events == ["order.received", "order.planned", "order.ready", *ended]
     kept = {(file.disc, file.name): (file.digest, file.byte_count) for file in seen.files}
     assert kept == {(file.disc, file.name): (file.digest, file.byte_count) for file in expected.files}
     for digest, byte_count in kept.values():
