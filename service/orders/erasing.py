@@ -16,6 +16,7 @@ from service.orders.events import add_event
 from service.orders.faults import ChangedMeanwhileError, OrderFault, StateForbidsError
 from service.orders.finding import find_order, order_row
 from service.orders.kept_answers import empty_answers
+from service.orders.run_forgetting import forget_run
 from service.orders.states import FINISHED, EventType, State
 from service.orders.views import OrderView, order_view
 from service.store.files import FileStore
@@ -100,8 +101,12 @@ def _erase(session: Session, order: Order, to: State, now: datetime) -> None:
     of_order = select(Event.seq).where(Event.order_id == order.id)
     session.execute(delete(Delivery).where(Delivery.event_seq.in_(of_order)))
     session.execute(update(RunItem).where(RunItem.order_id == order.id).values(tune_name="", reference=None))
+    if order.run_id is not None:
+        forget_run(session, order.run_id)
     named = exists().where(Order.quote_id == Quote.id)
     session.execute(delete(Quote).where(Quote.id == quote_id, ~named))
+    if quote_id is not None and session.get(Quote, quote_id) is None:
+        empty_answers(session, quote_id)
     empty_answers(session, order.id)
     session.add(Erasure(order_id=order.id, at=now))
     session.flush()

@@ -19,6 +19,7 @@ from service.hooks.deliveries import forget_deliveries
 from service.orders.changing import change
 from service.orders.kept_answers import forget_answers
 from service.orders.quoting import forget_quotes
+from service.orders.run_forgetting import forget_refused
 from service.orders.states import FINISHED, State
 from service.settings import RetentionSettings
 from service.store.files import FileStore
@@ -70,7 +71,10 @@ def keep_retention(store: Store, files: FileStore, times: RetentionSettings) -> 
 
 
 def forget_tunes(store: Store, *, days: int) -> int:
-    """Let go of the tunes of orders that were finished so many days ago, with their names; gives how many."""
+    """Let go of the tunes of orders that were finished so many days ago, with their names; gives how many orders.
+
+    The names of tunes that a run refused go so many days after it was opened.
+    """
 
     def forget(session: Session, order: Order) -> None:
         let_go(session, holder_id=order.id, what="tune")
@@ -78,6 +82,8 @@ def forget_tunes(store: Store, *, days: int) -> int:
             item.tune_name = ""
 
     columns = {"tune_name": None, "tune_digest": ""}
+    with store.writing() as session:
+        forget_refused(session, store.now(session) - timedelta(days=days))
     return _forget(store, days, Order.tune_digest != "", forget, columns)
 
 

@@ -20,6 +20,7 @@ from service.orders.archives import ArchiveError, open_archive
 from service.orders.asked import AskedOrder, NamedDocument
 from service.orders.faults import OrderFault
 from service.orders.placing import place_order
+from service.orders.run_forgetting import forget_run
 from service.orders.states import State
 from service.orders.views import OrderView
 from service.store.faults import StoreError
@@ -142,6 +143,7 @@ class _TakenByAnotherError(Exception):
     """Another worker made an order of the pair; ours is not kept."""
 
 
+            forget_run(session, run.id)  # all its orders may have been deleted before its last pair had its turn
 def _asked(run: Run, item: RunItem, tune: Callable[[str], bytes]) -> AskedOrder:
     facts = run.asked
     reference = item.reference

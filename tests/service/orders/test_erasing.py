@@ -128,6 +128,22 @@ def test_nothing_that_was_sent_is_left_in_the_database(web: Web, any_parts: Part
         assert session.scalars(select(FileHold.what).where(FileHold.holder_id == order_id)).all() == []
 
 
+def test_the_kept_answer_of_its_quote_is_deleted_with_the_quote(web: Web, any_parts: Parts) -> None:
+    def quoted() -> TestResponse:
+        form = {"tune": (BytesIO(TUNE), "a.mid"), "order": '{"movement": "fernhollow-31"}'}
+        return web.http.post("/v1/quotes", data=form, headers={**web.key, "Idempotency-Key": '"quote-1"'})
+
+    quote: Any = quoted().json
+    order: Any = web.place("place-1", quote["id"]).json
+    planned(any_parts, order["id"])
+    web.say(order["id"], "cancel", "cancel-1")
+    assert quoted().json == quote
+
+    web.http.delete(f"/v1/orders/{order['id']}", headers=web.key)
+
+    problem_of(quoted(), "answer-deleted")
+
+
 def test_a_request_sent_again_after_the_deletion_makes_nothing_anew(web: Web, any_parts: Parts) -> None:
     order: Any = web.place("place-1").json
     planned(any_parts, order["id"])
