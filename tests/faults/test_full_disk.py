@@ -1,7 +1,10 @@
 """The disk that holds everything is full for a while: nothing is lost, nobody is told anything wrong."""
 
 import random
+from contextlib import ExitStack
 from pathlib import Path
+
+import pytest
 
 from service.access.first_start import first_start
 from service.moments import utc_now
@@ -11,22 +14,25 @@ from tests.faults.judging import files_judged, hooks_judged, orders_judged
 from tests.faults.pipeline import Wanted, wanted_orders
 from tests.faults.receiver import Receiver
 from tests.faults.served import Served
+from tests.faults.server import own_server
 from tests.faults.small_disk import filled, small_disk
 from tests.faults.whole import HASTE, make_hook, open_orders, untold
-from tests.service.conftest import environment_of, parts_of
+from tests.service.conftest import environment_of, new_database, parts_of
 
-DISK_MIB = 24
+DISK_MIB = {"sqlite": 24, "postgresql": 160}  # a new server of PostgreSQL takes 60 MB
 BEFORE, DURING, TRIES = 2, 2, 3
 
 
-def test_what_finds_no_room_is_told_so_and_is_taken_later_and_nothing_is_lost(tmp_path: Path) -> None:
+@pytest.mark.parametrize("database", ["sqlite", "postgresql"])
+def test_what_finds_no_room_is_told_so_and_is_taken_later_and_nothing_is_lost(tmp_path: Path, database: str) -> None:
     answers = Answers()
     orders = wanted_orders(BEFORE + DURING, every_s=1.0, chance=random.Random(24))
-    with small_disk(tmp_path / "data", DISK_MIB) as disk, Receiver(random.Random(24)) as receiver:
-        parts = parts_of(tmp_path)
+    with small_disk(DISK_MIB[database]) as disk, Receiver(random.Random(24)) as receiver, ExitStack() as until_end:
+        url = new_database(until_end.enter_context(own_server(disk)).url) if database == "postgresql" else None
+        parts = parts_of(disk, url)
         key = first_start(parts.store, utc_now())
         assert key is not None
-        served = Served(tmp_path, {**environment_of(tmp_path), **HASTE}, workers=0)
+        served = Served(tmp_path, {**environment_of(disk, url), **HASTE}, workers=0)
         asking = Asking(served.url, key.secret, answers)
         try:
             receiver.secret = make_hook(asking, receiver.url)
@@ -37,7 +43,7 @@ def test_what_finds_no_room_is_told_so_and_is_taken_later_and_nothing_is_lost(tm
             wait_for(lambda: not untold(parts), within_s=90)
         finally:
             codes = served.stop()
-        faults = [*answers.faults, *receiver.faults, *files_judged(tmp_path)]
+        faults = [*answers.faults, *receiver.faults, *files_judged(disk)]
         faults += orders_judged(parts, orders, tmp_path) + hooks_judged(parts, receiver)
         parts.store.close()
 

@@ -233,7 +233,7 @@ class _Killer:
         try:
             with self._parts.store.reading() as session:
                 names = session.scalars(select(Order.taken_by).where(Order.state == "planning"))
-                return {int(name.split(":")[-2]) for name in names if name}
+                return {int(name.split(":")[1]) for name in names if name}
         except StoreError:
             return set()
 
