@@ -7,6 +7,8 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from service.importing import ONE_AT_A_TIME
+
 if TYPE_CHECKING:
     from collections.abc import Mapping
 
@@ -17,27 +19,31 @@ if TYPE_CHECKING:
 
 def check_tune(tune: bytes, settings: Settings) -> None:
     """As `layout.walk.check_tune`."""
-    from layout.walk import check_tune as check  # noqa: PLC0415 -- as the module says
+    with ONE_AT_A_TIME:
+        from layout.walk import check_tune as check  # noqa: PLC0415 -- as the module says
 
     check(tune, settings)
 
 
 def plan_sheets(job: SheetJob, drawings: Mapping[str, bytes] | None = None) -> SheetPlan:
     """As `layout.sheet_walk.plan_sheets`."""
-    from layout.sheet_walk import plan_sheets as plan  # noqa: PLC0415 -- as the module says
+    with ONE_AT_A_TIME:
+        from layout.sheet_walk import plan_sheets as plan  # noqa: PLC0415 -- as the module says
 
     return plan(job, drawings)
 
 
 def sheet_files_of(plan: SheetPlan) -> dict[str, bytes]:
     """As `layout.sheet_walk.sheet_files_of`."""
-    from layout.sheet_walk import sheet_files_of as files  # noqa: PLC0415 -- as the module says
+    with ONE_AT_A_TIME:
+        from layout.sheet_walk import sheet_files_of as files  # noqa: PLC0415 -- as the module says
 
     return files(plan)
 
 
 def trial_files(movement: Movement, cutter: Cutter) -> dict[str, bytes]:
     """As `layout.trial_walk.trial_files`."""
-    from layout.trial_walk import trial_files as files  # noqa: PLC0415 -- as the module says
+    with ONE_AT_A_TIME:
+        from layout.trial_walk import trial_files as files  # noqa: PLC0415 -- as the module says
 
     return files(movement, cutter)

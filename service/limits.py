@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 from layout.limits import Limit, limit, limits_told
+from service.importing import ONE_AT_A_TIME
 
 MIB = 1024 * 1024
 
@@ -104,8 +105,9 @@ class Limits:
     def told(self) -> tuple[Limit, ...]:
         """Every limit: of reading a tune, of sheet jobs, these, and of hooks, in the order of the fields."""
         # The computation takes a second to import, and is needed here only for what it limits itself.
-        from layout.sheet_walk import LIMITS_OF_SHEETS  # noqa: PLC0415
-        from layout.walk import LIMITS_OF_READING  # noqa: PLC0415
+        with ONE_AT_A_TIME:
+            from layout.sheet_walk import LIMITS_OF_SHEETS  # noqa: PLC0415
+            from layout.walk import LIMITS_OF_READING  # noqa: PLC0415
 
         return LIMITS_OF_READING + LIMITS_OF_SHEETS + limits_told(self) + limits_told(HOOK_LIMITS, prefix="hook_")
 

@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import TYPE_CHECKING, Any, Protocol, TypeVar
 
+from service.importing import ONE_AT_A_TIME
+
 if TYPE_CHECKING:
     from types import ModuleType
 
@@ -140,6 +142,7 @@ class TheWalk:
 
 
 def _walk() -> ModuleType:
-    from layout import walk  # noqa: PLC0415 -- as the class says
+    with ONE_AT_A_TIME:
+        from layout import walk  # noqa: PLC0415 -- as the class says
 
     return walk

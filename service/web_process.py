@@ -8,13 +8,13 @@ import importlib
 import logging
 import os
 import shutil
-import sys
 import threading
 from pathlib import Path
 from typing import Any
 
 from gunicorn.glogging import Logger
 
+from service.importing import ONE_AT_A_TIME
 from service.logs import start_logging
 from service.settings import settings_from
 from service.web_worker import GatheringWorker
@@ -82,5 +82,5 @@ def on_exit(server: Any) -> None:
 
 def _warm() -> None:
     for name in COMPUTATION:
-        if name not in sys.modules:
+        with ONE_AT_A_TIME:
             importlib.import_module(name)
