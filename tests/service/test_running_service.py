@@ -8,6 +8,7 @@ import subprocess
 import sys
 import time
 from collections.abc import Iterator
+from contextlib import ExitStack
 from dataclasses import dataclass
 from importlib.resources import files
 from pathlib import Path
@@ -205,6 +206,25 @@ def test_a_chunked_body_is_taken(service: Service, planned: Path) -> None:
 
     assert answer.status == 200
     assert answer.body == (planned / "disc.svg").read_bytes()
+
+
+def test_idle_sockets_and_stalled_bodies_of_one_client_hold_nobody_up(service: Service) -> None:
+    head = f"POST {FERNHOLLOW} HTTP/1.1\r\nHost: a\r\nContent-Type: audio/midi\r\nContent-Length: 5000\r\n\r\n"
+    with ExitStack() as kept:
+        for _ in range(40):
+            kept.enter_context(socket.create_connection(("127.0.0.1", service.port)))
+            stalled = kept.enter_context(socket.create_connection(("127.0.0.1", service.port)))
+            stalled.sendall(head.encode() + b"MThd")
+        time.sleep(0.3)
+        took_s = []
+        for _ in range(8):  # 2 processes: that all went to one is all but ruled out
+            begun_s = time.monotonic()
+            assert service.ask("GET", "/healthz").status == 200
+            took_s.append(time.monotonic() - begun_s)
+
+        assert max(took_s) < 1
+        stalled.settimeout(20)
+        assert stalled.recv(100).startswith(b"HTTP/1.1 408 Request Timeout\r\n")
 
 
 def test_a_body_for_an_address_where_nothing_is_gets_its_answer(service: Service) -> None:
