@@ -39,7 +39,8 @@ def _run(name: str, seed: int) -> bool:
         outcome = bear(Path(text), ordeal, database_url=url, between=between)
         _say(f"{name}, seed {seed}", *outcome.figures, *outcome.faults)
         if outcome.faults:
-            _say(*(Path(text) / "log").read_text(errors="replace").splitlines()[-200:])
+            lines = (Path(text) / "log").read_text(errors="replace").splitlines()
+            _say(*[line for line in lines if " INFO " not in line][-200:])
     return not outcome.faults
 
 
