@@ -142,8 +142,13 @@ def _reason(plan: Plan) -> str | None:
 
 def _take_files_over(session: Session, first: Order, plan: Plan, order: Order) -> None:
     files = select(PlanFile).where(PlanFile.order_id == first.id, PlanFile.revision == plan.revision)
+    # What else the order repeated holds, of plans before this one, is no part of the repeat, and goes with that order.
+    needed = {order.tune_digest, order.movement_digest, order.cutter_digest, order.settings_digest}
     for file in session.scalars(files):
+        needed.add(file.digest)
         copied = {column.key: getattr(file, column.key) for column in PlanFile.__mapper__.columns}
         session.add(PlanFile(**{**copied, "order_id": order.id, "revision": 1}))
     for held in session.scalars(select(FileHold).where(FileHold.holder_id == first.id)):
+        if held.digest not in needed:
+            continue
         hold(session, Hold(digest=held.digest, owner_id=order.owner_id, holder_id=order.id, what=held.what))

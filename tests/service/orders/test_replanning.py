@@ -4,14 +4,16 @@ import pytest
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
+from service.orders.asked import AskedRepeat
 from service.orders.deciding import Seen, replan_order
 from service.orders.faults import ChangedMeanwhileError, StateForbidsError
 from service.orders.placing import Also, nothing_more
+from service.orders.repeating import repeat_order
 from service.orders.replanning import AskedAnew, columns_of
 from service.orders.views import OrderView
 from service.parts import Parts
 from service.store.tables import FileHold, Order
-from tests.service.shop import WEB_SHOP, keeper_of, open_shop, placed, plan_of, planned, taken
+from tests.service.shop import WEB_SHOP, keeper_of, open_shop, placed, plan_of, planned, release_seen, taken
 
 ANEW = AskedAnew(settings=b'{"title": "For Ada"}')
 
@@ -64,3 +66,20 @@ def test_a_replan_that_is_refused_or_undone_leaves_nothing_held(shop: Parts) -> 
     with pytest.raises(StateForbidsError, match="the order is received"):
         replanned(shop, order_id)
     assert held_for(shop, order_id) == before
+
+
+def test_a_repeat_holds_what_it_gives_and_nothing_of_the_plans_before(shop: Parts) -> None:
+    first_id = placed(shop).id
+    before = {file.digest for file in planned(shop, first_id).files}
+    replanned(shop, first_id)
+    anew = {file.digest for file in planned(shop, first_id).files}
+    release_seen(shop, first_id)
+
+    again = repeat_order(shop.store, WEB_SHOP, AskedRepeat(repeat_of=first_id), nothing_more)
+
+    with shop.store.reading() as session:
+        row = session.get_one(Order, again.id)
+    asked = {row.tune_digest, row.movement_digest, row.cutter_digest, row.settings_digest}
+    assert before - anew
+    assert held_for(shop, again.id) == anew | asked
+    assert keeper_of(shop).read(row.settings_digest) == ANEW.settings
