@@ -57,12 +57,21 @@ class Wanted:
         return asking.ask("POST", "/v1/orders", **self._form())
 
     def release(self, asking: Asking) -> Told:
-        """Release it, likewise."""
+        """Release the plan it has, likewise."""
         headers = {"Content-Type": "application/json", "Idempotency-Key": f'"release-{self.number}"'}
-        body = json.dumps({"by": "M. Weber"}).encode()
+        body = json.dumps({"by": "M. Weber", "plan": self._plan_seen(asking)}).encode()
         return asking.insist(
             "POST", f"/v1/orders/{self.id}/release", body=body, headers=headers, within_s=ANSWERED_WITHIN_S
         )
+
+    def _plan_seen(self, asking: Asking) -> str:
+        until_s = time.monotonic() + ANSWERED_WITHIN_S
+        while True:
+            seen = asking.ask("GET", f"/v1/orders/{self.id}")
+            if seen is not None:
+                return str(seen.json["plan"]["tag"])
+            if time.monotonic() > until_s:
+                raise TimeoutError(f"the order {self.reference} is not told after {ANSWERED_WITHIN_S:g} s")
 
     def _form(self) -> Any:
         order = {
