@@ -12,7 +12,7 @@ import select
 import signal
 import subprocess
 import time
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from types import FrameType
 
@@ -45,12 +45,14 @@ class Program:
     handed_on: tuple[int, ...] = ()
 
 
-def supervise(programs: Sequence[Program], *, stop_within_s: float) -> int:
+def supervise(programs: Sequence[Program], *, stop_within_s: float, prepare: Callable[[], None] = lambda: None) -> int:
     """Keep programs running until SIGTERM or SIGINT, then until they have ended.
 
     Args:
         programs: What runs.
         stop_within_s: Seconds they have to stop; one that takes much longer is killed.
+        prepare: Done once the first program is started and before all others are: what may take its time while that
+            one gets ready. Where it raises, the first is stopped, and it is raised on.
 
     Returns:
         0; 2 where one could not run at all.
@@ -64,7 +66,7 @@ def supervise(programs: Sequence[Program], *, stop_within_s: float) -> int:
 
     before = {number: signal.signal(number, tell) for number in (signal.SIGTERM, signal.SIGINT)}
     try:
-        return _Supervisor(programs, told, stop_within_s).run()
+        return _Supervisor(programs, told, stop_within_s).run(prepare)
     finally:
         for number, handler in before.items():
             signal.signal(number, handler)
@@ -125,7 +127,13 @@ class _Supervisor:
         self._stop_within_s = stop_within_s
         self._code = 0
 
-    def run(self) -> int:
+    def run(self, prepare: Callable[[], None]) -> int:
+        self._kept[0].start_when_due()
+        try:
+            prepare()
+        except BaseException:
+            self._stop()
+            raise
         while not self._is_told():
             for kept in self._kept:
                 kept.start_when_due()

@@ -20,6 +20,7 @@ from service.settings import settings_from
 from service.web_worker import GatheringWorker
 
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
+GATE = "DISCWRIGHT_GATE"  # as `service.commands.web` has it
 COMPUTATION = ("layout.walk", "layout.sheet_walk", "layout.trial_walk")
 WAITING_SHARE = 0.5  # of the threads, for requests that wait and streams of events; the rest is for all others
 WARM_AFTER_S = 0.5  # s; first the requests that waited for the start
@@ -61,6 +62,10 @@ def on_starting(server: Any) -> None:
     """Import what the workers will need, once for all of them, and see to the folder of their counts."""
     Path(os.environ[COUNTS_OF_PROCESSES]).mkdir(parents=True, exist_ok=True)
     importlib.import_module("service.app")
+    gate = os.environ.pop(GATE, None)
+    if gate is not None:
+        os.read(int(gate), 1)  # ends when `serve` has opened the database, or has ended itself
+        os.close(int(gate))
 
 
 def post_worker_init(worker: Any) -> None:

@@ -1,22 +1,19 @@
 """`discwright serve`: all of the service on one machine, the web and a worker, started again where they die."""
 
 import argparse
+import os
 import shutil
 import sys
 
-from service.access.first_start import first_start
 from service.access.loopback import is_loopback
 from service.commands import web
 from service.commands.arguments import OneLineParser, Tools
 from service.commands.errors import CommandError
-from service.commands.keys import first_key_lines
 from service.commands.output import say
 from service.commands.work import add_slots, checked_slots
 from service.logs import start_logging
 from service.moments import utc_now
-from service.parts import open_parts
 from service.settings import ServiceSettings, SettingsError
-from service.store.faults import StoreError
 from service.supervisor import Program, supervise
 
 ABOUT = "Start all of the service on this machine, web and worker, and keep it running until Ctrl-C."
@@ -44,10 +41,15 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     """
     wanted, slots = web.web_asked(asked), checked_slots(asked)
     settings = web.read_settings()
-    with web.listening(wanted) as listener:
-        _open_once(settings, wanted)
+    waits_for, opens = os.pipe()
+    with web.listening(wanted) as listener, os.fdopen(waits_for) as waits, os.fdopen(opens, "w") as gate:
         start_logging(settings.work)
         counts = web.new_counts()
+
+        def prepare() -> None:
+            _open_once(settings, wanted)
+            gate.close()  # whoever reads from the other end has waited for this
+
         try:
             return supervise(
                 [
@@ -55,8 +57,9 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
                         name="the web",
                         # It gets the socket itself: while it is started again connections wait, and none is refused.
                         command=web.gunicorn_command(wanted, f"fd://{listener.fileno()}", settings),
-                        environment=web.web_environment(wanted, counts),
-                        handed_on=(listener.fileno(),),
+                        # It imports the app meanwhile, and opens nothing before the database is ready.
+                        environment={**web.web_environment(wanted, counts), web.GATE: str(waits.fileno())},
+                        handed_on=(listener.fileno(), waits.fileno()),
                     ),
                     Program(
                         name="the worker",
@@ -64,6 +67,7 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
                     ),
                 ],
                 stop_within_s=settings.work.stop_within_s,
+                prepare=prepare,
             )
         finally:
             shutil.rmtree(counts, ignore_errors=True)
@@ -71,6 +75,12 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
 
 def _open_once(settings: ServiceSettings, wanted: web.WebAsked) -> None:
     """See that the database can be used, make the first key where that is due, and say where it serves."""
+    # These take half a second to import, in which the web is on its way.
+    from service.access.first_start import first_start  # noqa: PLC0415
+    from service.commands.keys import first_key_lines  # noqa: PLC0415
+    from service.parts import open_parts  # noqa: PLC0415
+    from service.store.faults import StoreError  # noqa: PLC0415
+
     try:
         parts = open_parts(settings)
         try:

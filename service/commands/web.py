@@ -28,6 +28,7 @@ WORKERS = 2
 THREADS = 16
 STOP_MARGIN_S = 2  # s; between the last answer and the end, for processes to end in
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
+GATE = "DISCWRIGHT_GATE"  # a file descriptor that ends when the web may open the database; set by `serve` alone
 LISTEN_BACKLOG = 2048  # connections that wait for a free thread; as gunicorn itself has it
 
 

@@ -7,9 +7,7 @@ import sys
 from service.commands.arguments import OneLineParser, Tools
 from service.commands.errors import GOOD, CommandError
 from service.logs import start_logging
-from service.parts import open_parts
 from service.settings import MOST_SLOTS, SettingsError, settings_from
-from service.store.faults import StoreError
 
 ABOUT = "Plan the orders that the web takes, and tell hooks of them, until Ctrl-C or SIGTERM."
 EXAMPLE = """example:
@@ -52,7 +50,10 @@ def run(asked: argparse.Namespace, tools: Tools) -> int:
     Raises:
         CommandError: A number is out of range, a setting is wrong, or the database cannot be used.
     """
-    from service.working import work  # noqa: PLC0415 -- `serve` reads the arguments of this command, and works not
+    # `serve` reads the arguments of this command, and works not.
+    from service.parts import open_parts  # noqa: PLC0415
+    from service.store.faults import StoreError  # noqa: PLC0415
+    from service.working import work  # noqa: PLC0415
 
     slots = checked_slots(asked)
     try:

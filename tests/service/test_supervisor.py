@@ -100,3 +100,31 @@ def test_one_that_will_not_stop_is_killed(tmp_path: Path) -> None:
 
     assert running.wait(60) == 0
     assert time.monotonic() - begun_s >= 12  # 2 s to stop, and 10 more
+
+
+def test_the_first_program_starts_before_what_is_prepared_and_the_others_after(tmp_path: Path) -> None:
+    seen: list[tuple[int, int]] = []
+
+    def prepare() -> None:
+        wait_for_starts(tmp_path, "a", 1)
+        seen.append((len(starts(tmp_path, "a")), len(starts(tmp_path, "b"))))
+
+    programs = [program(tmp_path, "a", "exec sleep 60"), program(tmp_path, "b", "exit 2")]
+    code = supervise(programs, stop_within_s=5, prepare=prepare)
+
+    assert (seen, code) == ([(1, 0)], 2)
+    assert len(starts(tmp_path, "b")) == 1
+
+
+def test_where_preparing_fails_the_first_program_is_stopped_and_no_other_starts(tmp_path: Path) -> None:
+    def prepare() -> None:
+        wait_for_starts(tmp_path, "a", 1)
+        raise LookupError("no database")
+
+    programs = [program(tmp_path, name, "exec sleep 60") for name in "ab"]
+    begun_s = time.monotonic()
+    with pytest.raises(LookupError, match=r"^no database$"):
+        supervise(programs, stop_within_s=30, prepare=prepare)
+
+    assert time.monotonic() - begun_s < 20  # it was told to stop, and waited for
+    assert starts(tmp_path, "b") == []
