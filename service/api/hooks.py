@@ -69,8 +69,8 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
     @needs(Scope.READ)
     def list_hooks(asker: Asker) -> Response:
         with store.reading() as session:
-            found = hooks_of(session, _holder(asker), now=clock())
-        return json_response({"hooks": [hook_told(hook) for hook in found]})
+            told = [hook_told(hook) for hook in hooks_of(session, _holder(asker), now=clock())]
+        return json_response({"hooks": told})
 
     @routes.post("/hooks")
     @describes(hooks.MAKE)
@@ -78,10 +78,8 @@ def _hooks(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) -> No
     def make_hook(asker: Asker) -> Response:
         body = read_body(request, HookBody, document="hook", most_bytes=MOST_BODY_BYTES)
         _check_url(body.url, asker, parts.settings)
-        types = None if body.types is None else tuple(dict.fromkeys(body.types))
-        wish = HookWish(url=body.url, types=types, for_all_orders=body.for_all_orders)
         with hook_problems(), store.writing() as session:
-            made = add_hook(session, _holder(asker), wish, now=clock())
+            made = add_hook(session, _holder(asker), _wish(body), now=clock())
         response = _with_secret(made, status=201)
         response.headers["Location"] = f"/v1/hooks/{made.hook.id}"
         return response
@@ -179,6 +177,11 @@ def _deliveries(routes: Blueprint, parts: Parts, clock: Callable[[], datetime]) 
 
 def _holder(asker: Asker) -> Holder:
     return Holder(owner_id=asker.owner_id, is_test=asker.is_test)
+
+
+def _wish(body: HookBody) -> HookWish:
+    types = None if body.types is None else tuple(dict.fromkeys(body.types))
+    return HookWish(url=body.url, types=types, for_all_orders=body.for_all_orders)
 
 
 def _check_url(url: str, asker: Asker, settings: ServiceSettings) -> None:

@@ -56,8 +56,7 @@ def key_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Bluepri
         found = list_keys(store, owner_id=_seen_by(asker), after=page.after or "", most=page.limit + 1)
         response = json_response({"keys": [key_told(key) for key in found[: page.limit]]})
         if len(found) > page.limit:
-            address = f"/v1/keys?after={found[page.limit - 1].id}&limit={page.limit}"
-            response.headers["Link"] = f'<{address}>; rel="next"'  # RFC 8288
+            response.headers["Link"] = _next_page(found[page.limit - 1].id, page.limit)
         return response
 
     @routes.post("")
@@ -126,6 +125,10 @@ def _made(parts: Parts, asker: Asker, body: KeyBody, now: datetime) -> NewKey:
 
 def _refused(pointer: str, message: str) -> DocumentError:
     return DocumentError(document="key", problems=(Problem(pointer=pointer, message=message),))
+
+
+def _next_page(last_id: str, limit: int) -> str:
+    return f'</v1/keys?after={last_id}&limit={limit}>; rel="next"'  # RFC 8288
 
 
 def _seen_by(asker: Asker) -> str | None:

@@ -20,8 +20,8 @@ Stop the service first. On PostgreSQL load the dump before:
   pg_restore --clean --if-exists --no-owner --dbname="$DATABASE_URL" /backups/discs/database.dump
 
 Deleted orders and hooks, hooks turned off and revoked keys are noted beside the files, in the store of files: where
-that is lost too, those since the backup are not known; look through `discwright keys list`. Browsers sign in anew. Events
-go on with higher numbers than before, so that readers miss none."""
+that is lost too, those since the backup are not known; look through `discwright keys list`. Browsers sign in anew.
+Events go on with higher numbers than before, so that readers miss none."""
 
 
 def add_arguments(parser: OneLineParser) -> None:
