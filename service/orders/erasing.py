@@ -16,6 +16,7 @@ from service.orders.events import add_event
 from service.orders.faults import ChangedMeanwhileError, OrderFault, StateForbidsError
 from service.orders.finding import find_order, order_row
 from service.orders.kept_answers import empty_answers
+from service.orders.run_archives import trim_archive
 from service.orders.run_forgetting import forget_run
 from service.orders.states import FINISHED, EventType, State
 from service.orders.views import OrderView, order_view
@@ -28,7 +29,8 @@ from service.store.tables import Delivery, Erasure, Event, Order, Plan, PlanFile
 def erase_order(store: Store, files: FileStore, asker: Asker, order_id: str) -> OrderView:
     """Delete what an order holds; one that is deleted already stays as it is.
 
-    It is noted first and then deleted, so that whatever happens in between, no deletion is without its note.
+    It is noted first and then deleted, so that whatever happens in between, no deletion is without its note. The
+    archive of its run, where that is still being opened, loses its tune too.
 
     Args:
         store: The database.
@@ -45,8 +47,14 @@ def erase_order(store: Store, files: FileStore, asker: Asker, order_id: str) -> 
     with store.reading() as session:
         seen = find_order(session, asker, order_id)
     _check_finished(seen.state)
-    if seen.erased_at is not None:
-        return seen
+    if seen.erased_at is None:
+        seen = _erased(store, files, asker, order_id)
+    if seen.run_id is not None:
+        trim_archive(store, files, seen.run_id)  # also where it is asked again, for the first time may have ended here
+    return seen
+
+
+def _erased(store: Store, files: FileStore, asker: Asker, order_id: str) -> OrderView:
     files.note(order_id)
     try:
         with store.writing() as session:

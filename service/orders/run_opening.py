@@ -79,6 +79,8 @@ class RunOpener:
                 for item in items:
                     self._open(run, item, asker, archive.tune)
         except (ArchiveError, FileLostError) as fault:
+            if self._is_other_archive(run):
+                return len(items)  # a tune of it was deleted; its pairs have their turn with the new one
             for item in items:
                 self._refuse(item, str(fault))
         return len(items)
@@ -102,6 +104,10 @@ class RunOpener:
             self._archive = ("", b"")  # two are never held at a time
             self._archive = (digest, self._keeper.read(digest))
         return self._archive[1]
+
+    def _is_other_archive(self, run: Run) -> bool:
+        with self._store.reading() as session:
+            return session.scalars(select(Run.archive_digest).where(Run.id == run.id)).one() != run.archive_digest
 
     def _open(self, run: Run, item: RunItem, asker: Asker, tune: Callable[[str], bytes]) -> None:
         def note(session: Session, order: OrderView) -> None:
@@ -137,13 +143,13 @@ class RunOpener:
             still = update(Run).where(Run.id == run.id, Run.opened_at.is_(None))
             session.execute(still.values(opened_at=self._store.now(session)))
             let_go(session, holder_id=run.id)
+            forget_run(session, run.id)  # all its orders may have been deleted before its last pair had its turn
 
 
 class _TakenByAnotherError(Exception):
     """Another worker made an order of the pair; ours is not kept."""
 
 
-            forget_run(session, run.id)  # all its orders may have been deleted before its last pair had its turn
 def _asked(run: Run, item: RunItem, tune: Callable[[str], bytes]) -> AskedOrder:
     facts = run.asked
     reference = item.reference

@@ -1,0 +1,139 @@
+"""A deleted order's tune leaves the archive of its run too, while the run is still being opened."""
+
+import io
+import zipfile
+from dataclasses import replace
+from datetime import timedelta
+
+import pytest
+from sqlalchemy import update
+
+from service.limits import Limits
+from service.moments import utc_now
+from service.orders.asked import NamedDocument
+from service.orders.deciding import Seen, cancel_order
+from service.orders.erasing import erase_order
+from service.orders.placing import nothing_more
+from service.orders.run_opening import RunOpener
+from service.orders.run_views import RunView, find_run, items_of
+from service.orders.running import AskedRun, Pair, begin_run
+from service.parts import Parts
+from service.store.files import FileLostError
+from service.store.holds import sweep_files
+from service.store.tables import Run, StoredFile
+from tests.service.shop import TUNE, WEB_SHOP, archive_of, keeper_of, open_shop
+
+FERN, TARN = NamedDocument(id="fernhollow-31"), NamedDocument(id="tarnlight-17")
+TWO_MOVEMENTS = AskedRun(
+    archive=archive_of(a=TUNE, b=TUNE, c=TUNE),
+    pairs=(
+        Pair(tune="a.mid", movement=FERN),
+        Pair(tune="b.mid", movement=FERN),
+        Pair(tune="b.mid", movement=TARN),
+        Pair(tune="c.mid", movement=FERN),
+    ),
+    cutter=NamedDocument(id="fibre-laser"),
+)
+
+
+@pytest.fixture
+def shop(any_parts: Parts) -> Parts:
+    open_shop(any_parts)
+    return any_parts
+
+
+def opener_of(parts: Parts) -> RunOpener:
+    """One that makes two pairs orders at a time."""
+    return RunOpener(parts.store, keeper_of(parts), lambda _: None, replace(Limits(), run_orders_at_a_time=2))
+
+
+def begun(parts: Parts) -> RunView:
+    return begin_run(parts.store, keeper_of(parts), WEB_SHOP, TWO_MOVEMENTS, lambda _session, _run: None)
+
+
+def orders_of(parts: Parts, run_id: str) -> list[str | None]:
+    with parts.store.reading() as session:
+        return [item.order_id for item in items_of(session, WEB_SHOP, run_id, after=0, most=10)]
+
+
+def erase(parts: Parts, order_id: str | None) -> None:
+    assert order_id is not None
+    cancel_order(parts.store, WEB_SHOP, Seen(order_id=order_id), reason=None, recalled=False, also=nothing_more)
+    erase_order(parts.store, parts.files, WEB_SHOP, order_id)
+
+
+def digest_of(parts: Parts, run_id: str) -> str:
+    with parts.store.reading() as session:
+        return session.get_one(Run, run_id).archive_digest
+
+
+def tunes_kept(parts: Parts, run_id: str) -> list[str]:
+    with zipfile.ZipFile(io.BytesIO(parts.files.read(digest_of(parts, run_id)))) as archive:
+        assert all(archive.read(name) == TUNE for name in archive.namelist())
+        return archive.namelist()
+
+
+def swept(parts: Parts) -> None:
+    """Sweep as after an hour."""
+    with parts.store.writing() as session:
+        session.execute(update(StoredFile).values(created_at=utc_now() - timedelta(hours=2)))
+    sweep_files(parts.store, parts.files, most=100)
+
+
+def test_only_what_waiting_pairs_need_stays_in_the_archive(shop: Parts) -> None:
+    run = begun(shop)
+    opener_of(shop).open_some()
+    first_digest = digest_of(shop, run.id)
+
+    erase(shop, orders_of(shop, run.id)[0])
+    swept(shop)
+
+    # a.mid was the order's; b.mid is another pair's too, which waits
+    assert tunes_kept(shop, run.id) == ["b.mid", "c.mid"]
+    with pytest.raises(FileLostError):
+        shop.files.read(first_digest)
+
+
+def test_the_pairs_that_wait_become_orders_from_what_is_left(shop: Parts) -> None:
+    run = begun(shop)
+    opener = opener_of(shop)
+    opener.open_some()
+    erase(shop, orders_of(shop, run.id)[0])
+    swept(shop)
+
+    opener.open_all()
+
+    with shop.store.reading() as session:
+        assert dict(find_run(session, WEB_SHOP, run.id).counts) == {"cancelled": 1, "received": 3}
+
+
+def test_a_worker_that_had_seen_the_old_archive_refuses_no_pair(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    run = begun(shop)
+    opener_of(shop).open_some()
+    [order_id, *_] = orders_of(shop, run.id)
+    late = opener_of(shop)
+    read = late._content
+
+    def content(digest: str) -> bytes:
+        monkeypatch.setattr(late, "_content", read)
+        erase(shop, order_id)
+        swept(shop)
+        return read(digest)
+
+    monkeypatch.setattr(late, "_content", content)
+    late.open_all()
+
+    with shop.store.reading() as session:
+        assert dict(find_run(session, WEB_SHOP, run.id).counts) == {"cancelled": 1, "received": 3}
+
+
+def test_a_run_that_is_opened_has_nothing_to_lose(shop: Parts) -> None:
+    run = begun(shop)
+    opener_of(shop).open_all()
+
+    for order_id in orders_of(shop, run.id):
+        erase(shop, order_id)
+    swept(shop)
+
+    with pytest.raises(FileLostError):
+        shop.files.read(digest_of(shop, run.id))
