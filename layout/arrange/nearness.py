@@ -10,9 +10,12 @@ from layout.mechanics.arrays import IntArray
 
 def near_pairs(problem: Problem, spots: IntArray) -> Iterator[tuple[int, int]]:
     """Pairs of spots of two plucks that no disc can have both, the inner track's first."""
+    track = problem.track[spots]
+    there = set(track.tolist())
     for pair in problem.besides:
-        inner = spots[problem.track[spots] == pair.inner_index]
-        outer = spots[problem.track[spots] == pair.outer_index]
+        if pair.inner_index not in there or pair.outer_index not in there:
+            continue
+        inner, outer = spots[track == pair.inner_index], spots[track == pair.outer_index]
         outer = outer[np.argsort(problem.asked_ns[outer], kind="stable")]
         outer_ns = problem.asked_ns[outer]
         for turn_ns in (-problem.turn_ns, 0, problem.turn_ns):

@@ -187,17 +187,17 @@ class LoadsStanding:
             self.entries += last - first
             self._loads[first:last] += load
         place = self._place(spot)
-        self._standing = np.insert(self._standing, np.searchsorted(self._standing, place), place)
+        self._standing = np.insert(self._standing, self._standing.searchsorted(place), place)
 
     def take(self, spot: int) -> None:
         """Take a spot that was put off again."""
         for first, last, load in self._of(spot, self._moments_ns):
             self.entries += last - first
             self._loads[first:last] -= load
-        self._standing = np.delete(self._standing, np.searchsorted(self._standing, self._place(spot)))
+        self._standing = np.delete(self._standing, self._standing.searchsorted(self._place(spot)))
 
     def _place(self, spot: int) -> int:
-        return int(np.searchsorted(self._moments_ns, self._problem.asked_ns[spot]))
+        return int(self._moments_ns.searchsorted(self._problem.asked_ns[spot]))
 
     def _load_at_release(self, spot: int) -> int:
         """What a spot loads the disc with at its own moment, for the next turn too where its window reaches so far."""
@@ -218,7 +218,6 @@ class LoadsStanding:
             yield 0, len(moments_ns), drive.loads_of(track, this_ns) + drive.loads_of(track, next_ns)
             return
         for released_ns in releases_ns:
-            first = int(np.searchsorted(moments_ns, released_ns - widest_ns, side="right"))
-            last = int(np.searchsorted(moments_ns, released_ns, side="right"))
+            first, last = moments_ns.searchsorted((released_ns - widest_ns, released_ns), side="right").tolist()
             if first < last:
                 yield first, last, drive.loads_of(track, released_ns - moments_ns[first:last])
