@@ -20,8 +20,13 @@ def two_discs() -> tuple[LaidOut, ...]:
     return walk.lay_out_discs(demo_tune(), TARNLIGHT, LASER, read_settings('{"discs": 2}'))
 
 
+@cache
+def one_disc() -> LaidOut:
+    return walk.lay_out(demo_tune(), TARNLIGHT, LASER, read_settings("{}"))
+
+
 def test_a_tune_too_long_for_one_turn_is_good_to_cut_on_two_discs() -> None:
-    one = walk.lay_out(demo_tune(), TARNLIGHT, LASER, read_settings("{}"))
+    one = one_disc()
 
     assert not one.good_to_cut
     assert [disc.good_to_cut for disc in two_discs()] == [True, True]
@@ -119,11 +124,7 @@ def test_too_few_discs_name_how_many_it_takes_and_that_many_do() -> None:
 
 
 def test_the_number_of_discs_one_disc_names_will_do() -> None:
-    [finding] = [
-        finding
-        for finding in walk.lay_out(demo_tune(), TARNLIGHT, LASER, read_settings("{}")).findings
-        if finding.code is Code.MUSIC_TOO_LONG
-    ]
+    [finding] = [finding for finding in one_disc().findings if finding.code is Code.MUSIC_TOO_LONG]
 
     assert finding.measured == pytest.approx(58.75, abs=0.01)
     assert finding.remedy.startswith("Cut the tune over 2 discs (settings: discs), or choose a passage of it (passage)")

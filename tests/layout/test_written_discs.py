@@ -32,8 +32,13 @@ def written(place: int, *, plainly: bool = False) -> LaidOut:
     return walk.lay_out(demo_tune(), SHIPPED[place], LASER, read_settings(json.dumps(asked)))
 
 
-def read(laid_out: LaidOut, name: str) -> dict[str, Any]:
-    document: dict[str, Any] = json.loads(walk.files_of(laid_out)[name])
+@cache
+def files_of(place: int, *, plainly: bool = False) -> dict[str, bytes]:
+    return walk.files_of(written(place, plainly=plainly))
+
+
+def read(files: dict[str, bytes], name: str) -> dict[str, Any]:
+    document: dict[str, Any] = json.loads(files[name])
     return document
 
 
@@ -47,7 +52,7 @@ def test_a_written_disc_is_proved_and_good_to_cut(place: int) -> None:
 
 @pytest.mark.parametrize("place", PLACES)
 def test_the_layout_says_which_note_an_extra_pluck_belongs_to(place: int) -> None:
-    projections = read(written(place), "layout.json")["projections"]
+    projections = read(files_of(place), "layout.json")["projections"]
 
     extra = [one for one in projections if "again_of" in one]
     assert extra
@@ -60,19 +65,19 @@ def test_the_layout_says_which_note_an_extra_pluck_belongs_to(place: int) -> Non
 
 @pytest.mark.parametrize("place", PLACES)
 def test_the_report_counts_the_extra_plucks_of_the_layout(place: int) -> None:
-    projections = read(written(place), "layout.json")["projections"]
+    projections = read(files_of(place), "layout.json")["projections"]
 
-    report = read(written(place), "report.json")
+    report = read(files_of(place), "report.json")
 
     assert report["extra_pluck_count"] == sum("again_of" in one for one in projections) > 0
-    assert read(written(place, plainly=True), "report.json")["extra_pluck_count"] == 0
+    assert read(files_of(place, plainly=True), "report.json")["extra_pluck_count"] == 0
 
 
 @pytest.mark.parametrize("place", PLACES)
 def test_read_back_from_what_is_cut_the_drawing_plays_every_extra_pluck(place: int) -> None:
     laid_out = written(place)
 
-    checked = walk.check_drawing(walk.files_of(laid_out)["disc.dxf"], SHIPPED[place], LASER)
+    checked = walk.check_drawing(files_of(place)["disc.dxf"], SHIPPED[place], LASER)
 
     order, as_read = (np.lexsort((p.sounds_s, p.track_index)) for p in (laid_out.plucks, checked.plucks))
     assert checked.good_to_cut
@@ -84,6 +89,6 @@ def test_read_back_from_what_is_cut_the_drawing_plays_every_extra_pluck(place: i
 
 @pytest.mark.parametrize("place", PLACES)
 def test_plainly_written_no_pluck_is_extra(place: int) -> None:
-    projections = read(written(place, plainly=True), "layout.json")["projections"]
+    projections = read(files_of(place, plainly=True), "layout.json")["projections"]
 
     assert all("again_of" not in one and one["notes"] for one in projections)
