@@ -14,6 +14,7 @@ from tests.layout.sheets.test_cutting_order import (
     assert_the_travel_told_is_that_of_the_order,
 )
 from tests.layout.sheets.test_remnants import assert_remnants_lie_in_the_sheet_and_off_every_disc
+from tests.layout.write.test_sheet_files import assert_what_the_drawings_cut_keeps_every_rule
 
 DENSEST = math.pi / math.sqrt(12)  # of equal discs in the plane: A. Thue 1910, L. Fejes Tóth 1940
 
@@ -44,6 +45,7 @@ def test_whatever_the_job_its_plan_keeps_every_law(job: SheetJob) -> None:
     assert_remnants_lie_in_the_sheet_and_off_every_disc(plan)
     assert_no_disc_is_cut_after_one_of_a_later_strip(plan)
     assert_the_travel_told_is_that_of_the_order(plan)
+    assert_what_the_drawings_cut_keeps_every_rule(plan, job)
 
 
 def test_discs_that_fill_a_strip_exactly_all_fit() -> None:

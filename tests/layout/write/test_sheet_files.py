@@ -5,11 +5,11 @@ import json
 import ezdxf
 import numpy as np
 import pytest
-from hypothesis import given, settings
 
 from layout.documents.sheets import SheetJob
 from layout.sheet_walk import plan_sheets, sheet_files_of
-from tests.layout.sheets.jobs import discs_of_drawing, faults_of, job_of, jobs, sheet
+from layout.sheets.plan import SheetPlan
+from tests.layout.sheets.jobs import discs_of_drawing, faults_of, job_of, sheet
 
 CLAMP = {"x_mm": 0, "y_mm": 0, "width_mm": 60, "height_mm": 30}
 TWO_SHEETS = job_of(
@@ -28,10 +28,9 @@ def files(job: SheetJob) -> dict[str, bytes]:
     return sheet_files_of(plan_sheets(job))
 
 
-@settings(max_examples=15, deadline=None)
-@given(jobs())
-def test_what_the_drawings_cut_keeps_every_rule(job: SheetJob) -> None:
-    written = files(job)
+def assert_what_the_drawings_cut_keeps_every_rule(plan: SheetPlan, job: SheetJob) -> None:
+    """A law of every plan; test_arranging holds it against plans of any job."""
+    written = sheet_files_of(plan)
     by_id = {stock.id: stock for stock in job.stock}
 
     for on in json.loads(written["sheets.json"])["sheets"]:
