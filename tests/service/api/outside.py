@@ -1,8 +1,10 @@
 """schemathesis let loose on the service as it runs, knowing its API document alone."""
 
 import os
+import re
 import subprocess
 import sys
+from dataclasses import dataclass
 from pathlib import Path
 
 from tests.service.api.running import Running
@@ -12,19 +14,32 @@ CONFIG = Path(__file__).with_name("outside.toml")
 TOP = Path(__file__).parents[3]
 
 
-def try_from_outside(service: Running, *asked: str, with_key: bool, within_s: float) -> str:
-    """Run every check of schemathesis; gives what it told, "" where nothing was found.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Tried:
+    """What came of a try.
+
+    Attributes:
+        told: What schemathesis told; "" where nothing was found.
+        cases: How many requests it made up and judged.
+    """
+
+    told: str
+    cases: int
+
+
+def try_from_outside(service: Running, *asked: str, key: str | None, within_s: float) -> Tried:
+    """Run every check of schemathesis.
 
     Args:
         service: What is tried.
         asked: Further arguments: phases, how many examples, the seed.
-        with_key: Whether requests show a key that may do everything.
+        key: The secret of the key that requests show; None for no key.
         within_s: How long it may take.
     """
-    key = ("--header", f"Authorization: Bearer {service.key}") if with_key else ()
+    shown = () if key is None else ("--header", f"Authorization: Bearer {key}")
     command = [
         *(str(Path(sys.executable).with_name("schemathesis")), "--config-file", str(CONFIG)),
-        *("run", f"{service.url}/openapi.json", *key),
+        *("run", f"{service.url}/openapi.json", *shown),
         *("--checks", "all", "--continue-on-failure", "--no-shrink", "--workers", "2", "--warnings", "off"),
         *("--request-timeout", "30", *asked),
     ]
@@ -32,7 +47,9 @@ def try_from_outside(service: Running, *asked: str, with_key: bool, within_s: fl
     done = subprocess.run(
         command, env=environment, capture_output=True, text=True, timeout=within_s, cwd=service.log.parent, check=False
     )
-    return "" if done.returncode == 0 else done.stdout[-20_000:] + done.stderr[-2_000:]
+    told = "" if done.returncode == 0 else done.stdout[-20_000:] + done.stderr[-2_000:]
+    counted = re.search(r"(\d+) generated", done.stdout)
+    return Tried(told=told, cases=int(counted[1]) if counted else 0)
 
 
 def failures_in(service: Running) -> list[str]:

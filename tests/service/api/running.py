@@ -5,7 +5,7 @@ import socket
 import subprocess
 import sys
 import time
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
@@ -28,17 +28,21 @@ class Running:
         url: Where it is.
         key: The secret of a key that may do everything.
         log: What its processes write.
+        environment: The variables that they are started with.
     """
 
     url: str
     key: str
     log: Path
+    environment: Mapping[str, str]
 
 
 @contextmanager
-def running(folder: Path, *, with_worker: bool) -> Iterator[Running]:
-    """Start a service of its own in a folder, and stop it at the end."""
-    parts = parts_of(folder)
+def running(
+    folder: Path, database_url: str | None, *, with_worker: bool, more: Mapping[str, str] | None = None
+) -> Iterator[Running]:
+    """Start a service of its own in a folder, with more variables where they are wanted, and stop it at the end."""
+    parts = parts_of(folder, database_url)
     first = first_start(parts.store, utc_now())
     assert first is not None
     parts.store.close()
@@ -46,12 +50,12 @@ def running(folder: Path, *, with_worker: bool) -> Iterator[Running]:
         probe.bind(("127.0.0.1", 0))
         port = probe.getsockname()[1]
     variables = {"DISCWRIGHT_ON_LOOPBACK": "yes", "DISCWRIGHT_READ_RATE": MANY, "DISCWRIGHT_WRITE_RATE": MANY}
-    environment = {**os.environ, **environment_of(folder), **variables}
+    environment = {**os.environ, **environment_of(folder, database_url), **variables, **(more or {})}
     web = [*("-m", "gunicorn", "--bind", f"127.0.0.1:{port}", "--workers", "2", "--timeout", "120")]
     commands = [[*web, "--log-level", "warning", "--no-control-socket", "service.app:create_app()"]]
     if with_worker:
         commands.append(["-m", "service.commands.main", "work", "--slots", "1"])
-    service = Running(url=f"http://127.0.0.1:{port}", key=first.secret, log=folder / "log")
+    service = Running(url=f"http://127.0.0.1:{port}", key=first.secret, log=folder / "log", environment=environment)
     with service.log.open("w") as log:
         processes = [
             subprocess.Popen([sys.executable, *command], env=environment, stdout=log, stderr=log)
