@@ -21,7 +21,7 @@ from layout import walk
 from layout.arrange.arrangement import NO_NOTE
 from layout.arrange.loading import greatest_load
 from layout.documents import Cutter, Movement, read_settings, shipped_movement
-from layout.documents.movement import StarWheel
+from layout.documents.movement import StarWheel, Tooth
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.mechanics.projection import Pattern
 from layout.place import place
@@ -236,11 +236,15 @@ def tracks_of(layout: Json, movement: Movement, cutter: Cutter) -> list[Json]:
 def load_at(at_s: float, layout: Json, movement: Movement) -> float:
     """Torque at a moment, N mm: a tooth lifted by u loads the disc with k·u·r·cos δ; u is q at its release."""
     torque_nmm = 0.0
+    teeth_on: dict[int, list[Tooth]] = {}
+    for tooth in movement.teeth:
+        if tooth.usable:
+            teeth_on.setdefault(tooth.track, []).append(tooth)
     for pluck in layout["projections"]:
         arm_mm = math.sqrt(pluck["radius_mm"] ** 2 - movement.gantry_offset_mm**2)  # r·cos δ, as sin δ = d/r
         travel_mm = (pluck["sounds_s"] - at_s) * 2 * math.pi * arm_mm / movement.revolution_s  # until the release
-        for tooth in movement.teeth:
-            if tooth.track == pluck["track"] and tooth.usable and -1e-6 < travel_mm < tooth.lift_mm:
+        for tooth in teeth_on.get(pluck["track"], []):
+            if -1e-6 < travel_mm < tooth.lift_mm:
                 torque_nmm += tooth.stiffness_n_per_mm * (tooth.lift_mm - travel_mm) * arm_mm
     return torque_nmm
 
