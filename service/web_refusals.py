@@ -3,9 +3,30 @@
 import secrets
 from http import HTTPStatus
 
+from gunicorn.http.errors import LimitRequestHeaders, LimitRequestLine, ParseException
+
 from service.api.answers import NOTHING_LOADS, json_bytes
 from service.api.problems import PROBLEM_MEDIA_TYPE, PROBLEMS
 from service.api.request_ids import FIELD, RANDOM_BYTES
+from service.wording import shortened
+
+MOST_CHARACTERS = 200  # of what the reader of requests says, which may repeat what was sent
+
+
+def refusal_of(fault: ParseException) -> bytes:
+    """A whole answer that tells why gunicorn could not read a request.
+
+    Args:
+        fault: What it raised.
+    """
+    match fault:
+        case LimitRequestLine():
+            name = "address-too-long"
+        case LimitRequestHeaders():
+            name = "head-too-large"
+        case _:
+            name = "request-malformed"
+    return refusal(name, shortened(str(fault) or type(fault).__name__, MOST_CHARACTERS))
 
 
 def refusal(name: str, detail: str) -> bytes:

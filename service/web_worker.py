@@ -22,11 +22,12 @@ from functools import partial
 from typing import Any, ClassVar
 
 from gunicorn import http
+from gunicorn.http.errors import InvalidResponseHeader, InvalidResponseHeaderName, ParseException
 from gunicorn.workers.gthread import TConn, ThreadWorker
 
 from service.limits import Limits
 from service.web_gathering import Gathering, Pace, SlowBodyError, Step
-from service.web_refusals import refusal
+from service.web_refusals import refusal, refusal_of
 
 READING_SHARE = 0.25  # of the threads, for bodies too long to be gathered
 SPARE_THREADS = 2  # beside the others, for those who ask how the service is
@@ -38,6 +39,8 @@ MOST_TAKEN_AT_ONCE = 64  # connections
 LOOK_EVERY_S = 0.25  # at whose time is up
 STOP_LINGER_S = 2.0  # s; that a process told to stop waits for the rest of a request
 IPV6_NETWORK_BITS = 64  # what one customer has at least (RFC 6177)
+ANSWER_FAULTS = (InvalidResponseHeader, InvalidResponseHeaderName)  # of the app's own answer
+FAILED = "the service failed; its log holds the trace"
 NO_MORE_FILES = (errno.EMFILE, errno.ENFILE)
 NOBODY_THERE = (errno.EAGAIN, errno.EWOULDBLOCK, errno.ECONNABORTED)
 
@@ -207,7 +210,17 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
                 self._let_one_read_on()
             case Step.REFUSE:
                 told = f"the head of the request is longer than {self.limits.head_bytes} bytes"
-                self._refuse(connection, refusal("request-malformed", told) if piece else b"")
+                self._refuse(connection, refusal("head-too-large", told) if piece else b"")
+
+    def handle_error(self, req: Any, client: Any, addr: Any, exc: Exception) -> None:
+        """Tell a client why its request was not read, or that the service failed; the app knows nothing of either."""
+        is_theirs = isinstance(exc, ParseException) and not isinstance(exc, ANSWER_FAULTS)
+        if is_theirs:
+            log.info("a request could not be read: %r", exc)
+        else:
+            log.error("a request failed outside the app", exc_info=exc)
+        with suppress(OSError):
+            client.sendall(refusal_of(exc) if is_theirs else refusal("internal-error", FAILED))
 
     def _let_one_read_on(self) -> None:
         if self._waiting_to_read and self._reading.total() < self._most_reading:

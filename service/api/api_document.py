@@ -24,7 +24,6 @@ from service.media_types import JSON_MEDIA_TYPE
 
 VERSION = "1.0.0"  # of the API: the first number changes where a client must, the second where something is added
 BYTES: Schema = {"type": "string", "format": "binary"}
-TOO_LONG = "The request line is longer than 4,094 bytes. Told by the web server, in HTML."
 SIGNED = ("webhook-id", "webhook-timestamp", "webhook-signature")
 REQUEST_ID: Schema = {"$ref": "#/components/headers/Request-Id"}
 
@@ -258,8 +257,6 @@ def _responses(route: Route, schemas: Schemas) -> Schema:
             "headers": headers,
             "content": {PROBLEM_MEDIA_TYPE: {"schema": {"allOf": [told, types]}}},
         }
-    if operation.query is not None:
-        made["414"] = {"description": TOO_LONG}
     return dict(sorted(made.items()))
 
 

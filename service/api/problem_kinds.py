@@ -103,6 +103,19 @@ KINDS = (
         try_again=True,
     ),
     ProblemKind(
+        name="address-too-long",
+        status=414,
+        title="The address of the request is too long",
+        what_to_do="The request line takes at most 4,094 bytes: say less in the query.",
+    ),
+    ProblemKind(
+        name="head-too-large",
+        status=431,
+        title="The head of the request is too large",
+        what_to_do="It may have 100 fields of 8,190 bytes each, and head_bytes of GET /v1/limits in all: send fewer or "
+        "shorter ones, such as cookies.",
+    ),
+    ProblemKind(
         name="upload-too-large",
         status=413,
         title="The request body is too large",

@@ -13,7 +13,7 @@ from service.web_worker import GatheringWorker
 QUICK = replace(
     Limits(),
     head_s=2,
-    head_bytes=4096,
+    head_bytes=8192,
     body_s=2,
     body_bytes_per_s=1000,
     gathered_bytes=10_000,

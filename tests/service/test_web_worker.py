@@ -220,8 +220,8 @@ def test_a_head_that_does_not_come_ends_with_408_and_silence_with_nothing(quick:
 def test_a_head_without_end_is_refused(quick: Quick) -> None:
     told = problem(quick.send(b"GET /healthz HTTP/1.1\r\nA: " + b"b" * QUICK.head_bytes))
 
-    assert (told["type"], told["status"]) == ("/problems/request-malformed", 400)
-    assert told["detail"] == "the head of the request is longer than 4096 bytes"
+    assert (told["type"], told["status"]) == ("/problems/head-too-large", 431)
+    assert told["detail"] == "the head of the request is longer than 8192 bytes"
 
 
 def test_a_body_that_is_cut_short_is_answered_at_once(quick: Quick) -> None:
@@ -274,3 +274,30 @@ def test_when_told_to_stop_it_answers_what_it_has_and_ends(tmp_path: Path) -> No
 )
 def test_connections_are_counted_by_address_and_by_network(client: Any, address: str) -> None:
     assert address_of(client) == address
+
+
+FIELDS = 100  # as many as gunicorn takes
+
+
+@pytest.mark.parametrize(
+    ("text", "name"),
+    [
+        (b"GARBAGE\r\n\r\n", "request-malformed"),
+        (b"GET / HTTP/3.7\r\n\r\n", "request-malformed"),
+        (b"GET / HTTP/1.1\r\nHost: a\r\nBad Name: 1\r\n\r\n", "request-malformed"),
+        (b"POST /length HTTP/1.1\r\nHost: a\r\nTransfer-Encoding: gzip\r\n\r\n", "request-malformed"),
+        (b"GET /%b HTTP/1.1\r\nHost: a\r\n\r\n" % (4090 * b"a"), "address-too-long"),
+        (
+            b"GET / HTTP/1.1\r\nHost: a\r\n%b\r\n" % b"".join(b"X-%d: a\r\n" % i for i in range(FIELDS)),
+            "head-too-large",
+        ),
+        (b"GET / HTTP/1.1\r\nHost: a\r\nX: %b\r\n\r\n" % (9000 * b"a"), "head-too-large"),
+    ],
+    ids=["no HTTP", "version", "name of a field", "coding", "long line", "many fields", "long head"],
+)
+def test_a_request_that_cannot_be_read_is_told_why_like_every_other_error(quick: Quick, text: bytes, name: str) -> None:
+    told = problem(quick.send(text))
+
+    kind = PROBLEMS[name]
+    assert (told["type"], told["status"], told["try_again"]) == (kind.type, kind.status, False)
+    assert told["detail"]

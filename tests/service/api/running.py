@@ -1,4 +1,4 @@
-"""The service as it runs, on loopback: gunicorn with two web workers, and a worker that plans where one is wanted."""
+"""The service as it runs, on loopback: two web processes, and a worker that plans where one is wanted."""
 
 import os
 import socket
@@ -51,8 +51,8 @@ def running(
         port = probe.getsockname()[1]
     variables = {"DISCWRIGHT_ON_LOOPBACK": "yes", "DISCWRIGHT_READ_RATE": MANY, "DISCWRIGHT_WRITE_RATE": MANY}
     environment = {**os.environ, **environment_of(folder, database_url), **variables, **(more or {})}
-    web = [*("-m", "gunicorn", "--bind", f"127.0.0.1:{port}", "--workers", "2", "--timeout", "120")]
-    commands = [[*web, "--log-level", "warning", "--no-control-socket", "service.app:create_app()"]]
+    web = ["-m", "service.commands.main", "web", "--host", "127.0.0.1", "--port", str(port), "--workers", "2"]
+    commands = [web]
     if with_worker:
         commands.append(["-m", "service.commands.main", "work", "--slots", "1"])
     service = Running(url=f"http://127.0.0.1:{port}", key=first.secret, log=folder / "log", environment=environment)
