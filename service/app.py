@@ -39,6 +39,8 @@ from service.api.trial_pieces import trial_piece_routes
 from service.background.queue import Queue
 from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
+from service.pages.own_routes import own_routes
+from service.pages.problems_shown import show_problems
 from service.parts import Parts, open_parts
 from service.planner import AnyPlanner, TheWalk
 from service.settings import ServiceSettings, settings_from
@@ -75,7 +77,10 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
+    for routes in _pages():
+        app.register_blueprint(routes)
     app.after_request(with_safe_head)
+    show_problems(app)
     name_requests(app)
     return app
 
@@ -106,6 +111,11 @@ def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
     yield export_routes(parts)
     yield key_routes(parts, _now)
     yield sign_in_routes(parts, _now)
+
+
+def _pages() -> Iterator[Blueprint]:
+    """What people see."""
+    yield own_routes()
 
 
 def _now() -> datetime:

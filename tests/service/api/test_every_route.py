@@ -46,6 +46,8 @@ TABLE: dict[str, Access] = {
     "GET /metrics": ADMIN_OR_LOOPBACK,
     "GET /problems": OPEN,
     "GET /problems/<name>": OPEN,
+    "GET /assets/<asked_digest>/<path:name>": OPEN,
+    "GET /sign-in": OPEN,
     "GET /sign-in/<secret>": COUNTED,
     "POST /sign-in": COUNTED,
     "POST /sign-out": ANY_KEY,
@@ -115,7 +117,7 @@ BODIES: dict[str, dict[str, Any]] = {
     "PATCH /v1/hooks/<hook_id>": {"for_all_orders": True},
 }
 # Parts of a path that name what is the same for all who may ask, or opens something by itself.
-OF_NOBODY = {"name", "secret", "text", "document_id", "fingerprint", "file_name", "revision", "disc"}
+OF_NOBODY = {"asked_digest", "name", "secret", "text", "document_id", "fingerprint", "file_name", "revision", "disc"}
 # Those that name what belongs to an owner, each with an id of its form that was never made.
 OWNED = {
     "key_id": "key_" + 32 * "0",
