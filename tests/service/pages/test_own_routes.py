@@ -37,7 +37,7 @@ def test_who_asks_for_html_at_the_root_is_led_to_the_first_page(client: FlaskCli
     told = client.get("/")
 
     assert (led.status_code, led.headers["Location"]) == (303, "/new")
-    assert told.json is not None and told.json["service"] == "discwright"
+    assert told.get_json()["service"] == "discwright"
     assert [answer.headers["Vary"] for answer in (led, told)] == ["Accept", "Accept"]
 
 
