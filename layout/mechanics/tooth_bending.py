@@ -69,7 +69,7 @@ def lift_shares(roots: FloatArray, end_mass_ratio: float) -> FloatArray:
 
 def frequency_hz(key: int, cents: float) -> float:
     """The frequency of a tooth tuned to a MIDI key, so many cents away; 440 Hz for A4 (ISO 16)."""
-    return A4_HZ * 2.0 ** ((key - A4_KEY) / OCTAVE_KEYS + cents / CENTS_IN_OCTAVE)
+    return float(A4_HZ * 2.0 ** ((key - A4_KEY) / OCTAVE_KEYS + cents / CENTS_IN_OCTAVE))
 
 
 def decay_s(frequency_hz: float, quality: float) -> float:
@@ -84,4 +84,5 @@ def decay_s(frequency_hz: float, quality: float) -> float:
 
 def _left_side(x: FloatArray, end_mass_ratio: float) -> FloatArray:
     sech = 2 * np.exp(-x) / (1 + np.exp(-2 * x))
-    return sech + np.cos(x) + end_mass_ratio * x * (np.cos(x) * np.tanh(x) - np.sin(x))
+    left: FloatArray = sech + np.cos(x) + end_mass_ratio * x * (np.cos(x) * np.tanh(x) - np.sin(x))
+    return left
