@@ -39,6 +39,7 @@ from service.api.trial_pieces import trial_piece_routes
 from service.background.queue import Queue
 from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
+from service.pages.disc import disc_routes
 from service.pages.own_routes import own_routes
 from service.pages.problems_shown import show_problems
 from service.parts import Parts, open_parts
@@ -72,12 +73,14 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     meter(app, counted)
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    for routes in (*_routes_of_layouts(planner or TheWalk(), parts), *_routes_of_orders(parts, queue)):
+    planner = planner or TheWalk()
+    desk = LayoutDesk(planner, LayoutCache(settings), settings.limits)
+    for routes in (*_routes_of_layouts(planner, desk, parts), *_routes_of_orders(parts, queue)):
         app.register_blueprint(routes)
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
-    for routes in _pages():
+    for routes in _pages(desk):
         app.register_blueprint(routes)
     app.after_request(with_safe_head)
     show_problems(app)
@@ -85,10 +88,10 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     return app
 
 
-def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]:
+def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts) -> Iterator[Blueprint]:
     """What is computed at once and kept for a while."""
     settings = parts.settings
-    yield layout_routes(LayoutDesk(planner, LayoutCache(settings), settings.limits), parts)
+    yield layout_routes(desk, parts)
     yield trial_piece_routes(parts)
     yield quote_routes(planner, parts)
     yield sheet_routes(settings.limits)
@@ -113,9 +116,10 @@ def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
     yield sign_in_routes(parts, _now)
 
 
-def _pages() -> Iterator[Blueprint]:
+def _pages(desk: LayoutDesk) -> Iterator[Blueprint]:
     """What people see."""
     yield own_routes()
+    yield disc_routes(desk)
 
 
 def _now() -> datetime:
