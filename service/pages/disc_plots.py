@@ -1,5 +1,6 @@
 """Plots of a disc's report, as lines and bars with their axes: the template draws them and says them in words too."""
 
+import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -9,7 +10,8 @@ from service.pages.texts import text_of
 WIDTH, HEIGHT = 360, 200  # units of the picture: about the pixels of a phone's width
 LEFT, RIGHT, TOP, BOTTOM = 46, 10, 26, 34
 MOST_TICKS = 5
-STEPS = (1.0, 2.0, 2.5, 5.0, 10.0)  # what a tick's step may be, times a power of ten
+STEPS = (1.0, 2.0, 2.5, 5.0, 10.0, 20.0)  # what a tick's step may be, times a power of ten
+LEAST_SHOWN = 1e-6  # of any unit; what is smaller is shown as nothing
 FULL_TURN_DEG = 360
 
 
@@ -196,12 +198,10 @@ def _named(one: Mapping[str, Any], *, speeds: bool) -> str:
 
 def _scale(most: float) -> tuple[float, tuple[Tick, ...]]:
     """The end of an axis from 0 that holds `most`, and its ticks."""
-    most = most or 1.0
-    power = 10.0
-    while power > most / MOST_TICKS:
-        power /= 10
-    step = next(size * power for size in (*STEPS, 20.0, 25.0, 50.0) if size * power * MOST_TICKS >= most)
-    count = int(-(-most // step))
+    most = most if most >= LEAST_SHOWN else 1.0
+    power = 10.0 ** math.floor(math.log10(most / MOST_TICKS))
+    step = next(size * power for size in STEPS if size * power * MOST_TICKS >= most)
+    count = math.ceil(most / step)
     return count * step, tuple(Tick(at=_up(n / count), words=f"{n * step:g}") for n in range(count + 1))
 
 

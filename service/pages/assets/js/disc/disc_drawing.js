@@ -29,6 +29,8 @@ export function discDrawing(state) {
   };
   drawn.sizeLines = (zoom) => {
     drawn.zoom = zoom;
+    turning.style.willChange = "auto"; // for one frame, so that the layer is painted anew at its new size
+    requestAnimationFrame(() => { turning.style.willChange = ""; });
     const radius = fine((half * RING) / Math.sqrt(zoom));
     element.style.setProperty("--line", `${fine(Math.max(LEAST_LINE_MM, (half * LINE) / zoom))}px`);
     for (const circle of [ring, pointer, ...drawn.marks.querySelectorAll("circle.at")]) circle.setAttribute("r", radius);

@@ -31,8 +31,9 @@ export function openPlaying(stage, state, turning, chart, hearing) {
     where.textContent = wordsFor(state);
     range.setAttribute("aria-valuetext", where.textContent);
   }
-  function step(now) {
+  function step() {
     frame = requestAnimationFrame(step);
+    const now = performance.now(); // a late frame is told the moment it should have begun
     const sound_s = clock.read(now);
     drawAt(sound_s);
     if (now - worded < WORDS_EVERY_MS) return;
