@@ -17,7 +17,7 @@ export function openDisc(data) {
   const drawn = discDrawing(state);
   stage.replaceChildren(drawn.element);
   const chart = openChart(state);
-  const playing = openPlaying(stage, state, turningOf(data.turning, data.movement), chart, data.hearing);
+  const playing = openPlaying(stage, state, turningOf(data.turning, data.movement), chart);
   const { seek, toggle } = playing;
   const view = openView(stage, drawn, state, seek);
   openPanel(state);

@@ -8,7 +8,7 @@ import { barAt } from "./placing.js";
 const WORDS_EVERY_MS = 250;
 const AHEAD = 0.8; // of the chart's width: where the head may go before the chart follows
 
-export function openPlaying(stage, state, turning, chart, hearing) {
+export function openPlaying(stage, state, turning, chart) {
   const play = find("#play");
   const range = find("#turned");
   const where = find("#where");
@@ -16,6 +16,7 @@ export function openPlaying(stage, state, turning, chart, hearing) {
   const clock = clockOf(find("#sound"), {
     onEnd: () => stop(),
     onSilent: () => { note.textContent = text("disc.silent"); },
+    onSound: () => { note.textContent = ""; },
   });
   let worded = -Infinity;
   let frame = 0;
@@ -36,6 +37,7 @@ export function openPlaying(stage, state, turning, chart, hearing) {
     const now = performance.now(); // a late frame is told the moment it should have begun
     const sound_s = clock.read(now);
     drawAt(sound_s);
+    if (clock.isSilent() && sound_s >= turning.end_s) return stop();
     if (now - worded < WORDS_EVERY_MS) return;
     worded = now;
     tellWhere();
@@ -43,7 +45,7 @@ export function openPlaying(stage, state, turning, chart, hearing) {
   }
   function start() {
     if (clock.at_s() >= turning.end_s - 0.01) clock.seek(0);
-    clock.source(hearing[chosenSource()]);
+    listen();
     clock.start();
     play.textContent = text("disc.stop");
     stage.dataset.playing = "true";
@@ -62,14 +64,16 @@ export function openPlaying(stage, state, turning, chart, hearing) {
     tellWhere();
   }
   const toggle = () => (stage.dataset.playing === "true" ? stop() : start());
-  const chosenSource = () => find("input[name=hear]:checked")?.value;
+  // The sound that is chosen, of the disc that is shown; the place in it stays.
+  const listen = () => clock.source(state.hearing[find("input[name=hear]:checked")?.value]);
 
   play.addEventListener("click", toggle);
   range.addEventListener("input", () => seek(Number(range.value)));
   find("#speed").addEventListener("change", (event) => clock.speed(Number(event.target.value)));
   for (const choice of findAll("input[name=hear]")) {
-    choice.addEventListener("change", () => clock.source(hearing[choice.value]));
+    choice.addEventListener("change", listen);
   }
+  state.subscribe("shown", () => stage.dataset.playing === "true" && listen());
   clock.speed(Number(find("#speed").value));
   stage.dataset.playing = "false";
   seek(0);

@@ -15,6 +15,7 @@ export function openState(data) {
     movement: data.movement,
     rulings_at: data.rulings_at,
     layout: data.layout,
+    hearing: data.hearing,
     shown: placed(data.layout, data.movement),
     chosen: null,
     pointed: null,
@@ -25,9 +26,10 @@ export function openState(data) {
       told[subject].add(listener);
       return () => told[subject].delete(listener);
     },
-    // Another layout of the same movement: a layout.json, or the `layout` of a page's disc-data.
-    show(layout) {
+    // Another layout of the same movement: a layout.json, or the `layout` of a page's disc-data; and where it is heard.
+    show(layout, hearing = state.hearing) {
       state.layout = layout;
+      state.hearing = hearing;
       state.shown = placed(layout, state.movement);
       state.chosen = state.pointed = state.marked = null;
       SUBJECTS.forEach(tell);
