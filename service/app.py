@@ -16,6 +16,7 @@ from service.api.desk import LayoutDesk
 from service.api.events import event_routes
 from service.api.exports import export_routes
 from service.api.failures import answer_failures
+from service.api.hearing_shelf import HearingShelf
 from service.api.hooks import hook_routes
 from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
@@ -75,7 +76,8 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     guard(app, parts, Rates(settings.access))
     planner = planner or TheWalk()
     desk = LayoutDesk(planner, LayoutCache(settings), settings.limits)
-    for routes in (*_routes_of_layouts(planner, desk, parts), *_routes_of_orders(parts, queue)):
+    shelf = HearingShelf(settings)
+    for routes in (*_routes_of_layouts(planner, desk, parts, shelf), *_routes_of_orders(parts, queue, shelf)):
         app.register_blueprint(routes)
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
@@ -88,10 +90,10 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     return app
 
 
-def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts) -> Iterator[Blueprint]:
+def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is computed at once and kept for a while."""
     settings = parts.settings
-    yield layout_routes(desk, parts)
+    yield layout_routes(desk, parts, shelf)
     yield trial_piece_routes(parts)
     yield quote_routes(planner, parts)
     yield sheet_routes(settings.limits)
@@ -101,15 +103,15 @@ def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts) -> I
     yield problem_pages()
 
 
-def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
+def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is kept, and who may see it."""
     links = ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
     yield order_routes(parts, queue.send)
     yield decision_routes(parts, queue.send, links)
-    yield order_file_routes(parts)
+    yield order_file_routes(parts, shelf)
     yield run_routes(parts)
     yield event_routes(parts)
-    yield proof_routes(parts, links)
+    yield proof_routes(parts, links, shelf)
     yield hook_routes(parts)
     yield export_routes(parts)
     yield key_routes(parts, _now)

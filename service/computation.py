@@ -9,14 +9,13 @@ from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
-    from typing import BinaryIO
 
     from layout.documents import Cutter, Movement, Settings
     from layout.documents.sheets import SheetJob
     from layout.hear import Asked, Hearing
     from layout.hear.performance import Of, Turn
     from layout.sheets.plan import SheetPlan
-    from layout.write.wav import Bits
+    from layout.write.wav import Bits, Output
 
 
 def check_tune(tune: bytes, settings: Settings) -> None:
@@ -61,7 +60,7 @@ def hearing_of(layout_json: bytes, movement: Movement, asked: Asked) -> Hearing:
     return hearing(layout_json, movement, asked)
 
 
-def write_hearing(hearing: Hearing, file: BinaryIO, bits: Bits | None) -> None:
+def write_hearing(hearing: Hearing, file: Output, bits: Bits | None) -> None:
     """The hearing as WAV of so many bits, or as MIDI for None, as `layout.hearing_walk` writes them."""
     from layout.hearing_walk import write_hearing_midi, write_wav  # noqa: PLC0415 -- as the module says
 

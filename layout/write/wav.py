@@ -5,7 +5,7 @@ IBM and Microsoft, 1991); samples are signed, least byte first.
 """
 
 import struct
-from typing import BinaryIO, Literal
+from typing import Literal, Protocol
 
 import numpy as np
 
@@ -14,6 +14,15 @@ from layout.hear.hearing import RATE_HZ, Hearing
 from layout.mechanics.arrays import FloatArray
 
 Bits = Literal[16, 24]
+
+
+class Output(Protocol):
+    """What bytes are written into, one piece after the other."""
+
+    def write(self, content: bytes, /) -> object:
+        """Write the next piece."""
+
+
 PEAK_RATIO = 10 ** (-1 / 20)  # −1 dBFS: what a converter may overshoot between samples stays whole (common practice)
 HEAD_BYTES = 44
 MOST_BYTES = 2**32 - 1  # a chunk's size has 32 bits
@@ -26,7 +35,7 @@ def wav_bytes(hearing: Hearing, bits: Bits) -> int:
     return HEAD_BYTES + data + data % 2
 
 
-def write_wav(hearing: Hearing, file: BinaryIO, *, bits: Bits) -> None:
+def write_wav(hearing: Hearing, file: Output, *, bits: Bits) -> None:
     """The hearing into a file, block by block; its greatest sample is 1 dB below full scale, silence is zeros.
 
     It is mixed twice: once for the greatest sample, once to be written. No dither: what is silent stays so.

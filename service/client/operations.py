@@ -198,6 +198,16 @@ class Operations:
         path = place("/v1/layouts/{fingerprint}/{file_name}", {"fingerprint": fingerprint, "file_name": file_name})
         return self._caller.send("GET", path, query=query)
 
+    def tell_layout_plucks(self, fingerprint: str, query: Query | None = None) -> Answer:
+        """What a layout plays, as MIDI."""
+        path = place("/v1/layouts/{fingerprint}/hearing.mid", {"fingerprint": fingerprint})
+        return self._caller.send("GET", path, query=query)
+
+    def tell_layout_sound(self, fingerprint: str, query: Query | None = None) -> Answer:
+        """A layout as it sounds."""
+        path = place("/v1/layouts/{fingerprint}/hearing.wav", {"fingerprint": fingerprint})
+        return self._caller.send("GET", path, query=query)
+
     def tell_limits(self) -> shapes.LimitsAnswer:
         """What is taken at most."""
         path = "/v1/limits"
@@ -266,6 +276,22 @@ class Operations:
         )
         return self._caller.send("GET", path, query=query)
 
+    def tell_order_plucks(self, order_id: str, revision: int, disc: int, query: Query | None = None) -> Answer:
+        """What a disc of a plan plays, as MIDI."""
+        path = place(
+            "/v1/orders/{order_id}/plans/{revision}/files/{disc}/hearing.mid",
+            {"order_id": order_id, "revision": revision, "disc": disc},
+        )
+        return self._caller.send("GET", path, query=query)
+
+    def tell_order_sound(self, order_id: str, revision: int, disc: int, query: Query | None = None) -> Answer:
+        """A disc of a plan as it sounds."""
+        path = place(
+            "/v1/orders/{order_id}/plans/{revision}/files/{disc}/hearing.wav",
+            {"order_id": order_id, "revision": revision, "disc": disc},
+        )
+        return self._caller.send("GET", path, query=query)
+
     def make_proof_link(self, order_id: str) -> shapes.ProofLinkAnswer:
         """A signed link by which a customer sees the order and decides."""
         path = place("/v1/orders/{order_id}/proof-links", {"order_id": order_id})
@@ -295,6 +321,16 @@ class Operations:
         """A file of a proof."""
         path = place("/v1/proofs/{text}/files/{disc}/{name}", {"text": text, "disc": disc, "name": name})
         return self._caller.send("GET", path)
+
+    def tell_proof_plucks(self, text: str, disc: int, query: Query | None = None) -> Answer:
+        """What a disc of a proof plays, as MIDI."""
+        path = place("/v1/proofs/{text}/files/{disc}/hearing.mid", {"text": text, "disc": disc})
+        return self._caller.send("GET", path, query=query)
+
+    def tell_proof_sound(self, text: str, disc: int, query: Query | None = None) -> Answer:
+        """A disc of a proof as it sounds."""
+        path = place("/v1/proofs/{text}/files/{disc}/hearing.wav", {"text": text, "disc": disc})
+        return self._caller.send("GET", path, query=query)
 
     def say_verdict(self, text: str, body: shapes.VerdictBody) -> shapes.VerdictAnswer:
         """Accept or decline a proof."""

@@ -59,10 +59,10 @@ def main() -> None:
         for asked in (Asked(), Asked(of="written")):
             begun = time.process_time()
             hearing = hear(performance, movement, asked)
-            write_wav(hearing, _Nowhere(), bits=24)  # type: ignore[arg-type]  # all that is needed of a file
+            write_wav(hearing, _Nowhere(), bits=24)
             times = hearing.length_s / (time.process_time() - begun)
             tracemalloc.start()
-            write_wav(hearing, _Nowhere(), bits=24)  # type: ignore[arg-type]
+            write_wav(hearing, _Nowhere(), bits=24)
             peak_mib = tracemalloc.get_traced_memory()[1] / 2**20
             tracemalloc.stop()
             told = "met" if times >= GOAL else "MISSED"

@@ -74,7 +74,7 @@ def test_a_file_is_written_without_going_back() -> None:
             return len(content)  # type: ignore[arg-type]
 
     pipe = OneWay()
-    write_wav(plain(), pipe, bits=16)  # type: ignore[arg-type]  # all that is needed of a file
+    write_wav(plain(), pipe, bits=16)
 
     assert pipe.written == wav_bytes(plain(), 16)
 
