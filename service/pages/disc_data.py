@@ -7,9 +7,11 @@ from typing import Any
 from layout.documents import Cutter, Movement
 from layout.documents.movement import StarWheel
 from layout.documents.pitch import key_of
+from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.mechanics.blank import features_once
 from layout.mechanics.projection import Pattern, pattern_of
 from layout.mechanics.turning import turning_of
+from layout.play.plucks import Plucks
 from service.pages.disc_shown import Record, ShownDisc
 
 # A screen shows a disc at some 30 pixels a millimetre at most, and tells time to a millisecond: each number keeps one
@@ -53,9 +55,27 @@ def disc_data(shown: ShownDisc) -> dict[str, Any]:
             "findings": [_finding(finding) for finding in layout["findings"]],
         },
         "hearing": dict(shown.hearing),
-        "turning": [[round(time_s, 4), round(turned_deg, 3)] for time_s, turned_deg in shown.turning_table],
+        "turning": [
+            [round(time_s, 4), round(turned_deg, 3)]
+            for time_s, turned_deg in shown.turning_table or steady_turning(shown.movement)
+        ],
         "rulings_at": shown.rulings_at,
     }
+
+
+def steady_turning(movement: Movement) -> tuple[tuple[float, float], ...]:
+    """Where the disc stands as its sound goes by that is made unless another turn is asked for: (seconds, degrees).
+
+    From the moment it begins to move: its start, then its stated speed.
+
+    Args:
+        movement: The movement.
+    """
+    from layout.hear.timeline import timeline_of  # noqa: PLC0415 -- all of the sound comes with it
+
+    none = Plucks(track_index=frozen_ints([]), sounds_s=frozen_floats([]), silent_from_s=frozen_floats([]))
+    table = timeline_of(movement, turning_of(movement), none, "steady").table
+    return tuple((time_s, math.degrees(turned_rad)) for time_s, turned_rad in table.tolist())
 
 
 def movement_data(movement: Movement, cutter: Cutter) -> dict[str, Any]:

@@ -21,8 +21,8 @@ class ShownDisc:
         cutter: The machine that cuts it.
         files: The address of each file that can be had, by name; a picture among them is shown where no script runs.
         hearing: Where its sound is, "disc" as it plays and "written" as the tune is written; empty where there is none.
-        turning_table: Where the disc stands through the sound: (seconds, degrees turned), rising; () for the stated
-            speed from the first moment on.
+        turning_table: Where the disc stands through the sound: (seconds, degrees turned), rising; () for the sound of
+            a steady turn.
         despite_findings: For which reason its cutting files are given although an error stands; None where none is.
         asks_reason: Whether this page may be asked again with such a reason.
         rulings_at: Where rulings by hand are sent; None where this disc takes none.

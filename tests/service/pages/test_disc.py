@@ -129,7 +129,7 @@ def test_the_same_page_is_made_of_a_layout_a_report_and_a_movement_alone() -> No
         as_text=True
     )
 
-    assert 'name="hear"' not in silent
+    assert "Hear it" not in silent
     assert 'name="hear" value="disc" checked' in heard
     assert _data_in(silent)["rulings_at"] is None
     assert _data_in(heard)["turning"] == [[0.0, 0.0], [1.0, 2.0]]

@@ -9,7 +9,7 @@ import pytest
 from layout.documents.pitch import key_of
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.turning import turning_of
-from service.pages.disc_data import DECIMALS, disc_data
+from service.pages.disc_data import DECIMALS, disc_data, steady_turning
 from tests.layout.examples import movement_with
 from tests.service.pages.discs_shown import MOVEMENTS, shown
 
@@ -42,6 +42,7 @@ def test_every_number_stays_within_half_of_its_last_digit_of_layout_json(movemen
     for part in ("projections", "notes", "bars"):
         for told, whole in zip(layout[part], disc.layout[part], strict=True):
             for name, value in told.items():
+                assert name not in DECIMALS or value == round(value, DECIMALS[name]), (part, name)
                 most = 0.5000001 * 10 ** -DECIMALS[name] if name in DECIMALS else 0
                 assert value == whole[name] or abs(value - whole[name]) <= most, (part, name)
 
@@ -97,3 +98,23 @@ def test_the_radius_of_release_is_the_one_discs_are_placed_by() -> None:
 
     for track, release_rad in zip(tracks, turning.release_rad.tolist(), strict=True):
         assert track["release_deg"] == pytest.approx(math.degrees(release_rad), abs=0.00005)
+
+
+def test_a_disc_stands_as_it_plays_once_it_has_started() -> None:
+    """Without a drive it is at its speed at once; else it comes late by t0·ln 2 (layout.mechanics.starting)."""
+    plain, driven = shown("fernhollow-31"), shown("mossbrook-67")
+
+    for disc in (plain, driven):
+        start = disc.report["drive"]["start"]
+        late_s = 0.0 if start is None else start["time_constant_s"] * math.log(2)
+        table = steady_turning(disc.movement)
+        assert table[0] == (0.0, 0.0)
+        assert table[-1] == pytest.approx((disc.movement.revolution_s + late_s, 360.0))
+        assert disc_data(disc)["turning"][-1] == [round(table[-1][0], 4), 360.0]
+    assert driven.report["drive"]["start"] is not None
+
+
+def test_a_table_of_its_own_wins_over_that_of_a_steady_turn() -> None:
+    data = disc_data(replace(shown(), turning_table=((0.0, 0.0), (99.0, 360.0))))
+
+    assert data["turning"] == [[0.0, 0.0], [99.0, 360.0]]
