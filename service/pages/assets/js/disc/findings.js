@@ -15,6 +15,7 @@ export function openFindings(state, { drawn, view, chart }) {
     follow();
   };
   const follow = () => {
+    for (const marks of [drawn.marks, chart.marks]) marks.classList.toggle("one-of", state.marked !== null);
     for (const mark of [...drawn.marks.children, ...chart.marks.children]) {
       const current = Number(mark.dataset.finding) === state.marked;
       mark.classList.toggle("current", current);
@@ -119,7 +120,8 @@ function chartMarks(place, state, chart) {
       return y < chart.top || y > chart.top + chart.high ? [] : [svg("path", { d: `M0 ${fine(y)}H${fine(360 * chart.pxPerDeg)}` })];
     }
     if (one.kind === "moment") return [svg("path", { d: `M${x} ${chart.top}v${chart.high}` })];
-    return [svg("circle", { cx: x, cy: fine(chart.yOf(one.radius_mm)), r: 8 })];
+    const y = Math.min(chart.top + chart.high, Math.max(chart.top, chart.yOf(one.radius_mm)));
+    return [svg("circle", { cx: x, cy: fine(y), r: 7 })];
   });
   return shapes.length ? [mark(place, state, ...shapes)] : [];
 }

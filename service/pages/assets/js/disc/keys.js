@@ -16,7 +16,10 @@ export function openKeys(areas, state, { view, pointing, toggle }) {
     PageUp: () => view.turnBy(-MUCH_DEG),
     PageDown: () => view.turnBy(MUCH_DEG),
     " ": () => toggle(),
-    Escape: () => state.choose(null),
+    Escape: () => {
+      state.choose(null);
+      state.mark(null);
+    },
     Enter: () => state.chosen && view.bring([onDrawing(state.chosen.radius_mm, state.chosen.angle_deg)]),
   };
   const steps = {

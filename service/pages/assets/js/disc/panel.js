@@ -8,8 +8,10 @@ const LEAST_NUDGE_MS = 0.05;
 export function openPanel(state) {
   const panel = find("#pointed");
   const none = panel.firstElementChild;
+  const brief = find("#brief"); // where the panel stands below the screen
   const show = () => {
     const thing = state.pointed ?? state.chosen;
+    brief.textContent = thing === null ? none.textContent : labelOf(thing, state);
     if (thing === null) return panel.replaceChildren(none);
     const rows = thing.kind === "projection" ? projectionRows(thing, state) : leftOutRows(thing, state);
     panel.replaceChildren(
