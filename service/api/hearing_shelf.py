@@ -142,14 +142,14 @@ class HearingShelf:
         return KeptSound(digest=digest, byte_count=kept.stat().st_size)
 
     def _let_go(self, keep: Path) -> None:
-        """Remove the least recently heard where all together are too large, and parts of stopped processes."""
+        """Remove what nobody has heard for long, the least recent where all are too large, and abandoned parts."""
         seen = []
         for path in self._folder.iterdir():
             with contextlib.suppress(FileNotFoundError):
                 known = path.stat()
-                if path.suffix == SUFFIX:
+                if path.suffix == SUFFIX and known.st_mtime >= time.time() - self._limits.hearing_kept_s:
                     seen.append((path == keep, known.st_mtime_ns, path.name, known.st_size, path))
-                elif known.st_mtime < time.time() - self._limits.abandoned_part_s:
+                elif path.suffix == SUFFIX or known.st_mtime < time.time() - self._limits.abandoned_part_s:
                     path.unlink(missing_ok=True)
         taken_bytes = 0
         for is_kept, _, _, size_bytes, path in sorted(seen, reverse=True):

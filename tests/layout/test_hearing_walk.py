@@ -95,6 +95,17 @@ def test_notes_placed_without_a_nudge_sound_at_one_time_both_ways() -> None:
     assert together >= len({round(one["sounds_s"], 6) for one in untouched})
 
 
+def test_notes_as_written_are_transposed_as_the_disc_is() -> None:
+    layout, _ = heard(SHIPPED[0])
+
+    plain, higher = (
+        performance_of({**layout, "transposed_semitones": semitones}, SHIPPED[0]).written_key for semitones in (0, 3)
+    )
+
+    assert len(plain) > 0
+    assert np.array_equal(higher, plain + 3)
+
+
 def test_a_layout_of_another_movement_is_a_fault_of_the_program() -> None:
     with pytest.raises(ValueError, match="cannot be heard on tarnlight-17"):
         hearing_of(layout_json(SHIPPED[0]), SHIPPED[2], Asked())

@@ -67,6 +67,18 @@ def test_an_undamped_tooth_rings_until_its_own_point_lifts_it() -> None:
     assert not samples[lifted + round(0.002 * RATE_HZ) : round(1.5 * RATE_HZ) + 1].any()
 
 
+def test_an_undamped_tooth_beside_a_damped_one_rings_on_past_its_neighbour_s_damper() -> None:
+    teeth = [
+        {"tooth": 1, "track": 1, "pitch": "C5"},
+        {"tooth": 2, "track": 1, "pitch": "C5", "damped": False, "lift_mm": 0.1},
+    ]
+    [damped, undamped, *_] = hearing_of(quick_with({"teeth": teeth}), [(1, 0.0), (1, 1.0)]).rings
+
+    # Damper 1 mm before the pluck at 1.5 s, 19.1 ms; lift 0.1 mm before it, but stilled in 2 ms by then.
+    assert damped.held_s == pytest.approx(1.5 - 1.0 / SPEED_MM_PER_S)
+    assert undamped.held_s == pytest.approx(1.5 - 0.002)
+
+
 def test_an_undamped_tooth_of_unknown_lift_rings_until_the_pluck_itself() -> None:
     movement = quick_with({"teeth/0/damped": False, "tooth_quality": 20_000})
     samples = heard(movement, [(1, 0.0), (1, 1.0)])

@@ -52,6 +52,8 @@ def test_tracks_of_one_pitch_sound_beside_each_other_and_two_teeth_of_a_track_ar
     assert len(hearing.rings) == 4
     assert [round(begin - MUSIC_BEGINS_S, 4) for begin, _, _ in read(hearing)] == [0.0, 0.5, 1.0]
     assert read(hearing)[1][1] > MUSIC_BEGINS_S + 1.0  # not cut by the other track's end
+    by_channel: Any = symusic.Score.from_midi(write_hearing_midi(hearing))
+    assert sorted(track.note_num() for track in by_channel.tracks) == [1, 2]
 
 
 def test_the_file_tells_title_length_and_voice() -> None:

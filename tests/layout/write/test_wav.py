@@ -2,6 +2,7 @@
 
 import io
 import struct
+import tracemalloc
 import wave
 
 import numpy as np
@@ -62,21 +63,39 @@ def test_an_odd_number_of_bytes_is_filled_up_as_chunks_must_be() -> None:
     assert len(file.getvalue()) == 44 + 864_003 + 1
 
 
+class OneWay:
+    """A file that can only be written to, and keeps nothing."""
+
+    def __init__(self) -> None:
+        self.written = 0
+
+    def write(self, content: bytes, /) -> int:
+        self.written += len(content)
+        return len(content)
+
+
 def test_a_file_is_written_without_going_back() -> None:
-    class OneWay(io.RawIOBase):
-        written = 0
-
-        def writable(self) -> bool:
-            return True
-
-        def write(self, content: object) -> int:
-            self.written += len(content)  # type: ignore[arg-type]  # bytes
-            return len(content)  # type: ignore[arg-type]
-
     pipe = OneWay()
     write_wav(plain(), pipe, bits=16)
 
     assert pipe.written == wav_bytes(plain(), 16)
+
+
+def test_a_sound_ten_times_as_long_takes_no_more_memory() -> None:
+    def peak_bytes(revolution_s: float) -> int:
+        movement = quick_with({"revolution_s": revolution_s, "fastest_revolution_s": 6})
+        hearing = hearing_of(movement, [(1 + place % 3, 0.1 * place) for place in range(int(revolution_s * 8))])
+        tracemalloc.start()
+        write_wav(hearing, OneWay(), bits=24)
+        _, peak = tracemalloc.get_traced_memory()
+        tracemalloc.stop()
+        return peak
+
+    short, long = peak_bytes(6), peak_bytes(60)
+
+    # 60 s of 24 bits are 8.6 MB; the plucks themselves, ten times as many, take some 100 bytes each.
+    assert long < short + 300_000
+    assert long < 3_000_000
 
 
 def test_a_sound_longer_than_a_wav_can_be_is_refused_before_anything_is_mixed() -> None:

@@ -2,6 +2,8 @@
 
 import hashlib
 import io
+import os
+import time
 from collections.abc import Iterator
 from dataclasses import replace
 from pathlib import Path
@@ -173,6 +175,20 @@ def test_the_least_recently_heard_goes_where_all_are_too_large(world: World, add
     assert len(first) == 1
     assert len(kept_in(world.parts)) == 1
     assert kept_in(world.parts) != first
+
+
+def test_a_sound_nobody_hears_is_gone_when_another_is_made(world: World, addresses: dict[str, str]) -> None:
+    get(world, f"{addresses['layout']}.wav")
+    for path in kept_in(world.parts):
+        os.utime(path, times=(0, time.time() - 86_500))
+    part = world.parts.settings.cache_directory / "hearings" / "stopped.part"
+    part.write_bytes(b"half")
+    os.utime(part, times=(0, 0))
+
+    get(world, f"{addresses['layout']}.mid?of=written")
+
+    assert len(kept_in(world.parts)) == 1
+    assert not part.exists()
 
 
 def test_a_disc_the_plan_does_not_have_is_not_heard(world: World, addresses: dict[str, str]) -> None:
