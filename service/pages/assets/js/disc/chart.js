@@ -13,84 +13,101 @@ const NAMED = 13; // px between two names of tracks
 const APART = 26; // px between two numbers along an axis
 const DEG = 180 / Math.PI;
 
-export function openChart(state) {
-  const scroll = find("#chart-scroll");
-  const names = find("#chart-names");
-  const wide = find("#chart-wide");
-  const { movement } = state;
-  const radii = movement.tracks.map((track) => track.radius_mm);
-  const high = Math.min(MOST, Math.max(LEAST, radii.length * ROW));
-  const pxPerMm = radii.length > 1 ? (high - 12) / (radii.at(-1) - radii[0]) : 10;
-  const yOf = (radius_mm) => TOP + high - 6 - (radius_mm - radii[0]) * pxPerMm;
-  const head = svg("path", { class: "head", d: `M0 ${TOP}V${TOP + high}` });
-  const marks = svg("g", { class: "marks" });
-  const chart = { scroll, marks, things: new Map(), yOf, pxPerDeg: 1, high, top: TOP };
+export class Chart {
+  scroll = find("#chart-scroll");
+  marks = svg("g", { class: "marks" });
+  things = new Map();
+  top = TOP;
+  pxPerDeg = 1;
+  #state;
+  #names = find("#chart-names");
+  #wide = find("#chart-wide");
+  #redrawn = new Set();
+  #element;
+  #head;
 
-  function draw() {
-    names.replaceChildren(namesOf(movement, yOf, TOP + high + FOOT)); // first: it takes its part of the width
-    const room = Math.max(240, scroll.clientWidth - 2);
-    chart.pxPerDeg = (room * 2 ** Number(wide.value)) / 360;
-    chart.things.clear();
-    const width = Math.ceil(360 * chart.pxPerDeg);
-    const element = svg(
-      "svg",
-      { class: "plot-turn", width, height: TOP + high + FOOT },
-      ground(state, chart, width),
-      ...thingsOf(state, chart, pxPerMm),
-      marks,
-      head,
-    );
-    scroll.replaceChildren(element);
-    chart.element = element;
-    turn();
+  constructor(state) {
+    this.#state = state;
+    this.radii = state.movement.tracks.map((track) => track.radius_mm);
+    this.high = Math.min(MOST, Math.max(LEAST, this.radii.length * ROW));
+    this.pxPerMm = this.radii.length > 1 ? (this.high - 12) / (this.radii.at(-1) - this.radii[0]) : 10;
+    this.#head = svg("path", { class: "head", d: `M0 ${TOP}V${TOP + this.high}` });
+    this.#draw();
+    state.subscribe("shown", () => this.#draw());
+    state.subscribe("turned", () => this.#turn());
+    state.subscribe("chosen", () => this.#show(state.chosen, "chosen"));
+    state.subscribe("pointed", () => this.#show(state.pointed, "pointed"));
+    this.#wide.addEventListener("input", () => this.#redraw());
+    let width = this.scroll.clientWidth;
+    new ResizeObserver(() => {
+      if (this.scroll.clientWidth === width) return;
+      width = this.scroll.clientWidth;
+      this.#redraw();
+    }).observe(this.scroll);
   }
-  function turn() {
-    head.style.transform = `translateX(${fine(state.turned_deg * chart.pxPerDeg)}px)`;
+
+  // Who draws marks on the chart draws them again when it has another width.
+  onRedraw(listener) {
+    this.#redrawn.add(listener);
   }
-  function follow(thing, name) {
-    scroll.querySelectorAll(`.${name}`).forEach((element) => element.classList.remove(name));
-    if (thing !== null) chart.things.get(thing)?.classList.add(name);
+
+  yOf(radius_mm) {
+    return TOP + this.high - 6 - (radius_mm - this.radii[0]) * this.pxPerMm;
   }
-  chart.bring = (turned_deg) => {
-    const x = turned_deg * chart.pxPerDeg;
-    if (x < scroll.scrollLeft + 20 || x > scroll.scrollLeft + scroll.clientWidth - 20) {
-      scroll.scrollLeft = x - scroll.clientWidth / 2;
-    }
-  };
-  // Scrolls on once the head has gone past a share of what is seen.
-  chart.follow = (turned_deg, share) => {
-    const x = turned_deg * chart.pxPerDeg - scroll.scrollLeft;
-    if (x > scroll.clientWidth * share || x < 0) scroll.scrollLeft += x - scroll.clientWidth * 0.1;
-  };
-  chart.at = (event) => {
-    const box = chart.element.getBoundingClientRect();
+
+  // A place of the screen in the chart's own pixels.
+  at(event) {
+    const box = this.#element.getBoundingClientRect();
     return [event.clientX - box.left, event.clientY - box.top];
-  };
-  draw();
-  state.subscribe("shown", draw);
-  state.subscribe("turned", turn);
-  state.subscribe("chosen", () => follow(state.chosen, "chosen"));
-  state.subscribe("pointed", () => follow(state.pointed, "pointed"));
-  const redraw = () => {
-    draw();
-    chart.onRedraw?.();
-    follow(state.chosen, "chosen");
-    chart.bring(state.chosen ? state.chosen.turned_deg : state.turned_deg);
-  };
-  wide.addEventListener("input", redraw);
-  let width = scroll.clientWidth;
-  new ResizeObserver(() => {
-    if (scroll.clientWidth === width) return;
-    width = scroll.clientWidth;
-    redraw();
-  }).observe(scroll);
-  return chart;
+  }
+
+  bring(turned_deg) {
+    const { scroll } = this;
+    const x = turned_deg * this.pxPerDeg - scroll.scrollLeft;
+    if (x < 20 || x > scroll.clientWidth - 20) scroll.scrollLeft += x - scroll.clientWidth / 2;
+  }
+
+  // Scrolls on once the head has gone past a share of what is seen.
+  follow(turned_deg, share) {
+    const { scroll } = this;
+    const x = turned_deg * this.pxPerDeg - scroll.scrollLeft;
+    if (x > scroll.clientWidth * share || x < 0) scroll.scrollLeft += x - scroll.clientWidth * 0.1;
+  }
+
+  #draw() {
+    const height = TOP + this.high + FOOT;
+    this.#names.replaceChildren(namesOf(this.#state.movement, this, height)); // first: it takes its part of the width
+    this.pxPerDeg = (Math.max(240, this.scroll.clientWidth - 2) * 2 ** Number(this.#wide.value)) / 360;
+    this.things.clear();
+    const width = Math.ceil(360 * this.pxPerDeg);
+    const inside = [ground(this.#state, this, width), ...thingsOf(this.#state, this), this.marks, this.#head];
+    this.#element = svg("svg", { class: "plot-turn", width, height }, ...inside);
+    this.scroll.replaceChildren(this.#element);
+    this.#turn();
+  }
+
+  #redraw() {
+    const { chosen, turned_deg } = this.#state;
+    this.#draw();
+    this.#redrawn.forEach((listener) => listener());
+    this.#show(chosen, "chosen");
+    this.bring(chosen ? chosen.turned_deg : turned_deg);
+  }
+
+  #turn() {
+    this.#head.style.transform = `translateX(${fine(this.#state.turned_deg * this.pxPerDeg)}px)`;
+  }
+
+  #show(thing, name) {
+    this.scroll.querySelectorAll(`.${name}`).forEach((element) => element.classList.remove(name));
+    if (thing !== null) this.things.get(thing)?.classList.add(name);
+  }
 }
 
-function thingsOf(state, chart, pxPerMm) {
+function thingsOf(state, chart) {
   const { movement, shown } = state;
   const { from_u, to_u, from_v, to_v } = extents(movement.pattern);
-  const height = Math.max(3, (to_v - from_v) * pxPerMm);
+  const height = Math.max(3, (to_v - from_v) * chart.pxPerMm);
   const bar = (thing, name) => {
     const pxPerAlong = (DEG / thing.radius_mm) * chart.pxPerDeg;
     const element = svg("rect", {
@@ -154,14 +171,14 @@ function seconds(deg, movement) {
   return `${s < 0 ? "−" : ""}${Math.abs(s).toFixed(1)} ${deg === 0 ? text("disc.axis_s") : ""}`.trim();
 }
 
-function namesOf(movement, yOf, height) {
+function namesOf(movement, chart, height) {
   let last = Infinity;
   const shown = movement.tracks.filter((track) => {
-    const y = yOf(track.radius_mm);
+    const y = chart.yOf(track.radius_mm);
     if (track.pitch === null || last - y < NAMED) return false;
     last = y;
     return true;
   });
-  const words = shown.map((track) => svg("text", { x: 36, y: fine(yOf(track.radius_mm) + 4) }, track.pitch));
+  const words = shown.map((track) => svg("text", { x: 36, y: fine(chart.yOf(track.radius_mm) + 4) }, track.pitch));
   return svg("svg", { width: 42, height }, svg("text", { x: 36, y: TOP - 8 }, text("disc.axis_bar")), words);
 }

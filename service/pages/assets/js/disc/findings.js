@@ -37,12 +37,21 @@ export function openFindings(state, { drawn, view, chart }) {
     entry?.scrollIntoView({ block: "center" });
     entry?.focus({ preventScroll: true });
   };
+  listen({ show, back }, drawn);
+  state.subscribe("shown", draw);
+  state.subscribe("marked", follow);
+  chart.onRedraw(drawChart);
+  draw();
+}
+
+// From a button of the list to the mark, which then has the focus; from a mark to its entry, by pointer or key.
+function listen(deeds, drawn) {
   document.addEventListener("click", (event) => {
     const target = event.target.closest("[data-finding]");
     if (target === null) return;
     const place = Number(target.dataset.finding);
-    if (target.tagName !== "BUTTON") return back(place);
-    show(place);
+    if (target.tagName !== "BUTTON") return deeds.back(place);
+    deeds.show(place);
     drawn.element.scrollIntoView({ block: "center" });
     drawn.marks.querySelector(`[data-finding="${place}"]`)?.focus({ preventScroll: true });
   });
@@ -50,12 +59,8 @@ export function openFindings(state, { drawn, view, chart }) {
     const mark = event.target.closest("svg [data-finding]");
     if (mark === null || (event.key !== "Enter" && event.key !== " ")) return;
     event.preventDefault();
-    back(Number(mark.dataset.finding));
+    deeds.back(Number(mark.dataset.finding));
   });
-  state.subscribe("shown", draw);
-  state.subscribe("marked", follow);
-  chart.onRedraw = drawChart;
-  draw();
 }
 
 // Where a finding lies: places with what they are, points that hold them, and when they pass the row (null: never).

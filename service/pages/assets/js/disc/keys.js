@@ -3,19 +3,20 @@ import { onDrawing } from "./placing.js";
 
 const A_LITTLE_DEG = 1;
 const MUCH_DEG = 10;
+const A_STEP = 0.1; // of half the drawing
 const MOVES = { ArrowLeft: [1, 0], ArrowRight: [-1, 0], ArrowUp: [0, 1], ArrowDown: [0, -1] };
 
-export function openKeys(areas, state, { view, pointing, toggle }) {
+export function openKeys(areas, state, { view, pointing, playing }) {
   const deeds = {
-    "+": () => view.nearer(),
-    "=": () => view.nearer(),
-    "-": () => view.farther(),
+    "+": () => view.stepBy(1),
+    "=": () => view.stepBy(1),
+    "-": () => view.stepBy(-1),
     0: () => view.whole(),
     "[": () => view.turnBy(-A_LITTLE_DEG),
     "]": () => view.turnBy(A_LITTLE_DEG),
     PageUp: () => view.turnBy(-MUCH_DEG),
     PageDown: () => view.turnBy(MUCH_DEG),
-    " ": () => toggle(),
+    " ": () => playing.toggle(),
     Escape: () => {
       state.choose(null);
       state.mark(null);
@@ -33,7 +34,7 @@ export function openKeys(areas, state, { view, pointing, toggle }) {
   areas.forEach((area, place) =>
     area.addEventListener("keydown", (event) => {
       if (event.ctrlKey || event.metaKey || event.altKey || event.target.closest("[data-finding]")) return;
-      if (event.shiftKey && MOVES[event.key]) view.moveBy(...MOVES[event.key]);
+      if (event.shiftKey && MOVES[event.key]) view.moveBy(...MOVES[event.key].map((way) => way * A_STEP * view.half));
       else if (steps[event.key]) pointing.go(steps[event.key](), place === 0);
       else if (deeds[event.key]) deeds[event.key]();
       else return;

@@ -2,82 +2,105 @@
 // data-playing, data-turned-deg and data-sound-s, which are what is drawn.
 import { find, findAll } from "../dom.js";
 import { text } from "../texts.js";
-import { clockOf } from "./clock.js";
+import { Clock } from "./clock.js";
 import { barAt } from "./placing.js";
 
 const WORDS_EVERY_MS = 250;
 const AHEAD = 0.8; // of the chart's width: where the head may go before the chart follows
+const AT_END_S = 0.01; // s before the end from which playing begins anew
 
-export function openPlaying(stage, state, turning, chart) {
-  const play = find("#play");
-  const range = find("#turned");
-  const where = find("#where");
-  const note = find("#sound-note");
-  const clock = clockOf(find("#sound"), {
-    onEnd: () => stop(),
-    onSilent: () => { note.textContent = text("disc.silent"); },
-    onSound: () => { note.textContent = ""; },
-  });
-  let worded = -Infinity;
-  let frame = 0;
+export class Playing {
+  #stage;
+  #state;
+  #turning;
+  #chart;
+  #clock;
+  #play = find("#play");
+  #range = find("#turned");
+  #where = find("#where");
+  #worded_ms = -Infinity;
+  #frame = 0;
 
-  function drawAt(sound_s) {
-    const turned_deg = turning.angleAt(sound_s);
-    state.turn(turned_deg);
-    stage.dataset.turnedDeg = turned_deg.toFixed(4);
-    stage.dataset.soundS = sound_s.toFixed(4);
-  }
-  function tellWhere() {
-    range.value = state.turned_deg;
-    where.textContent = wordsFor(state);
-    range.setAttribute("aria-valuetext", where.textContent);
-  }
-  function step() {
-    frame = requestAnimationFrame(step);
-    const now = performance.now(); // a late frame is told the moment it should have begun
-    const sound_s = clock.read(now);
-    drawAt(sound_s);
-    if (clock.isSilent() && sound_s >= turning.end_s) return stop();
-    if (now - worded < WORDS_EVERY_MS) return;
-    worded = now;
-    tellWhere();
-    chart.follow(state.turned_deg, AHEAD);
-  }
-  function start() {
-    if (clock.at_s() >= turning.end_s - 0.01) clock.seek(0);
-    listen();
-    clock.start();
-    play.textContent = text("disc.stop");
-    stage.dataset.playing = "true";
-    frame = requestAnimationFrame(step);
-  }
-  function stop() {
-    cancelAnimationFrame(frame);
-    clock.stop();
-    play.textContent = text("disc.play");
+  constructor(stage, state, turning, chart) {
+    [this.#stage, this.#state, this.#turning, this.#chart] = [stage, state, turning, chart];
+    const note = find("#sound-note");
+    const speed = find("#speed");
+    this.#clock = new Clock(find("#sound"), {
+      onEnd: () => this.stop(),
+      onSilent: () => { note.textContent = text("disc.silent"); },
+      onSound: () => { note.textContent = ""; },
+    });
+    this.#play.addEventListener("click", () => this.toggle());
+    this.#range.addEventListener("input", () => this.seek(Number(this.#range.value)));
+    speed.addEventListener("change", () => this.#clock.speed(Number(speed.value)));
+    for (const choice of findAll("input[name=hear]")) choice.addEventListener("change", () => this.#listen());
+    state.subscribe("shown", () => this.isPlaying && this.#listen());
+    this.#clock.speed(Number(speed.value));
     stage.dataset.playing = "false";
-    tellWhere();
+    this.seek(0);
   }
-  function seek(turned_deg) {
-    clock.seek(turning.timeAt(turned_deg));
-    drawAt(clock.at_s());
-    tellWhere();
-  }
-  const toggle = () => (stage.dataset.playing === "true" ? stop() : start());
-  // The sound that is chosen, of the disc that is shown; the place in it stays.
-  const listen = () => clock.source(state.hearing[find("input[name=hear]:checked")?.value]);
 
-  play.addEventListener("click", toggle);
-  range.addEventListener("input", () => seek(Number(range.value)));
-  find("#speed").addEventListener("change", (event) => clock.speed(Number(event.target.value)));
-  for (const choice of findAll("input[name=hear]")) {
-    choice.addEventListener("change", listen);
+  get isPlaying() {
+    return this.#stage.dataset.playing === "true";
   }
-  state.subscribe("shown", () => stage.dataset.playing === "true" && listen());
-  clock.speed(Number(find("#speed").value));
-  stage.dataset.playing = "false";
-  seek(0);
-  return { toggle, seek, stop };
+
+  toggle() {
+    if (this.isPlaying) this.stop();
+    else this.start();
+  }
+
+  start() {
+    if (this.#clock.at_s >= this.#turning.end_s - AT_END_S) this.#clock.seek(0);
+    this.#listen();
+    this.#clock.start();
+    this.#play.textContent = text("disc.stop");
+    this.#stage.dataset.playing = "true";
+    this.#frame = requestAnimationFrame(() => this.#step());
+  }
+
+  stop() {
+    cancelAnimationFrame(this.#frame);
+    this.#clock.stop();
+    this.#play.textContent = text("disc.play");
+    this.#stage.dataset.playing = "false";
+    this.#tellWhere();
+  }
+
+  seek(turned_deg) {
+    this.#clock.seek(this.#turning.timeAt(turned_deg));
+    this.#drawAt(this.#clock.at_s);
+    this.#tellWhere();
+  }
+
+  // The sound that is chosen, of the disc that is shown; the place in it stays.
+  #listen() {
+    this.#clock.source(this.#state.hearing[find("input[name=hear]:checked")?.value]);
+  }
+
+  #step() {
+    this.#frame = requestAnimationFrame(() => this.#step());
+    const now = performance.now(); // a late frame is told the moment it should have begun
+    const sound_s = this.#clock.read(now);
+    this.#drawAt(sound_s);
+    if (this.#clock.isSilent && sound_s >= this.#turning.end_s) return this.stop();
+    if (now - this.#worded_ms < WORDS_EVERY_MS) return;
+    this.#worded_ms = now;
+    this.#tellWhere();
+    this.#chart.follow(this.#state.turned_deg, AHEAD);
+  }
+
+  #drawAt(sound_s) {
+    const turned_deg = this.#turning.angleAt(sound_s);
+    this.#state.turn(turned_deg);
+    this.#stage.dataset.turnedDeg = turned_deg.toFixed(4);
+    this.#stage.dataset.soundS = sound_s.toFixed(4);
+  }
+
+  #tellWhere() {
+    this.#range.value = this.#state.turned_deg;
+    this.#where.textContent = wordsFor(this.#state);
+    this.#range.setAttribute("aria-valuetext", this.#where.textContent);
+  }
 }
 
 function wordsFor(state) {
