@@ -12,14 +12,15 @@ from layout.documents import Movement
 from layout.documents.pitch import key_of
 from layout.hear import Asked, Performance, hear
 from layout.hear.hearing import Hearing
+from layout.hear.performance import Of, Turn
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.mechanics.damping import damper_touch_s
 from layout.mechanics.turning import turning_of
 from layout.play.plucks import Plucks
 from layout.write.hearing_midi import write_hearing_midi
-from layout.write.wav import write_wav
+from layout.write.wav import Bits, Output, write_wav
 
-__all__ = ["Asked", "Hearing", "hearing_of", "write_hearing_midi", "write_wav"]
+__all__ = ["Asked", "Bits", "Hearing", "Of", "Output", "Turn", "hearing_of", "write_hearing_midi", "write_wav"]
 
 
 def hearing_of(layout_json: bytes, movement: Movement, asked: Asked) -> Hearing:

@@ -12,10 +12,8 @@ if TYPE_CHECKING:
 
     from layout.documents import Cutter, Movement, Settings
     from layout.documents.sheets import SheetJob
-    from layout.hear import Asked, Hearing
-    from layout.hear.performance import Of, Turn
+    from layout.hearing_walk import Asked, Bits, Hearing, Of, Output, Turn
     from layout.sheets.plan import SheetPlan
-    from layout.write.wav import Bits, Output
 
 
 def check_tune(tune: bytes, settings: Settings) -> None:
@@ -47,8 +45,8 @@ def trial_files(movement: Movement, cutter: Cutter) -> dict[str, bytes]:
 
 
 def hearing_asked(of: Of, turn: Turn) -> Asked:
-    """As `layout.hear.Asked`."""
-    from layout.hear import Asked  # noqa: PLC0415 -- as the module says
+    """As `layout.hearing_walk.Asked`."""
+    from layout.hearing_walk import Asked  # noqa: PLC0415 -- as the module says
 
     return Asked(of=of, turn=turn)
 

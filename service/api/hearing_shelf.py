@@ -27,7 +27,7 @@ from service.computation import hearing_asked, hearing_of, write_hearing
 from service.settings import ServiceSettings
 
 if TYPE_CHECKING:
-    from layout.write.wav import Bits
+    from layout.hearing_walk import Bits
 
 FOLDER = "hearings"
 SUFFIX = ".sound"

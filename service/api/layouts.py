@@ -93,6 +93,11 @@ def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Bluepr
         response.make_conditional(request)
         return response
 
+    _add_hearings(routes, desk, shelf)
+    return routes
+
+
+def _add_hearings(routes: Blueprint, desk: LayoutDesk, shelf: HearingShelf) -> None:
     @routes.get("/<fingerprint>/hearing.wav")
     @describes(hearings.LAYOUT_SOUND)
     @open_on_loopback(Scope.ORDER)
@@ -104,8 +109,6 @@ def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Bluepr
     @open_on_loopback(Scope.ORDER)
     def give_plucks(fingerprint: str) -> Response:
         return plucks_response(shelf, *_heard(_found(desk, fingerprint)), request)
-
-    return routes
 
 
 class LayoutTeller:

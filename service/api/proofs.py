@@ -63,6 +63,21 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
             raise ProblemError(name="route-unknown", detail=f"a proof shows {', '.join(SHOWN)} alone")
         return file_response(parts, file_of(plan, disc, name), request)
 
+    @routes.post("/<text>/verdict")
+    @describes(proofs.VERDICT)
+    @open_but_counted
+    def say(text: str) -> Response:
+        proof = _proof(links, text)
+        text_said = body_of(request, parts.settings.limits.document_bytes)
+        body = read_text(request, VerdictBody, text_said, document="verdict")
+        customer_says(parts.store, proof.order_id, proof.revision, body.verdict, by=body.by, note=body.note)
+        return json_response({"verdict": body.verdict, "revision": proof.revision})
+
+    _add_hearings(routes, parts, links, shelf)
+    return routes
+
+
+def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: HearingShelf) -> None:
     @routes.get("/<text>/files/<int:disc>/hearing.wav")
     @describes(hearings.PROOF_SOUND)
     @open_but_counted
@@ -76,18 +91,6 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     def give_plucks(text: str, disc: int) -> Response:
         _, plan = _shown(parts, _proof(links, text))
         return plucks_response(shelf, *heard_of(parts, plan, disc), request)
-
-    @routes.post("/<text>/verdict")
-    @describes(proofs.VERDICT)
-    @open_but_counted
-    def say(text: str) -> Response:
-        proof = _proof(links, text)
-        text_said = body_of(request, parts.settings.limits.document_bytes)
-        body = read_text(request, VerdictBody, text_said, document="verdict")
-        customer_says(parts.store, proof.order_id, proof.revision, body.verdict, by=body.by, note=body.note)
-        return json_response({"verdict": body.verdict, "revision": proof.revision})
-
-    return routes
 
 
 def _proof(links: ProofLinks, text: str) -> Proof:

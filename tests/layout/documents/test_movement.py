@@ -224,7 +224,7 @@ def test_numbers_of_the_sound_may_be_stated_with_their_worth() -> None:
 @pytest.mark.parametrize(
     ("field", "value", "limit"),
     [
-        ("tooth_quality", 0, "greater than or equal to 1"),
+        ("tooth_quality", 0.5, "greater than or equal to 1,"),
         ("teeth/0/quality", 2e6, "less than or equal to 1000000"),
         ("teeth/0/end_mass_ratio", -0.1, "greater than or equal to 0"),
         ("teeth/0/end_mass_ratio", 101, "less than or equal to 100"),
