@@ -13,7 +13,8 @@ from layout.documents.pitch import key_of
 from layout.hear import Asked, Performance, hear
 from layout.hear.hearing import Hearing
 from layout.hear.performance import Of, Turn
-from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.hear.timeline import timeline_of
+from layout.mechanics.arrays import FloatArray, frozen_floats, frozen_ints
 from layout.mechanics.damping import damper_touch_s
 from layout.mechanics.turning import turning_of
 from layout.play.plucks import Plucks
@@ -39,6 +40,16 @@ def hearing_of(layout_json: bytes, movement: Movement, asked: Asked) -> Hearing:
     if layout["movement"] != {"id": movement.id, "revision": movement.revision}:
         raise ValueError(f"a layout for {layout['movement']} cannot be heard on {movement.id} {movement.revision}")
     return hear(performance_of(layout, movement), movement, asked)
+
+
+def steady_turn_of(movement: Movement) -> FloatArray:
+    """How a movement turns at its stated speed, its start included: a hearing's `turning_table`, with no disc on it.
+
+    Args:
+        movement: The movement.
+    """
+    none = Plucks(track_index=frozen_ints(()), sounds_s=frozen_floats(()), silent_from_s=frozen_floats(()))
+    return timeline_of(movement, turning_of(movement), none, "steady").table
 
 
 def performance_of(layout: dict[str, Any], movement: Movement) -> Performance:

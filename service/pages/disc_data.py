@@ -7,11 +7,9 @@ from typing import Any
 from layout.documents import Cutter, Movement
 from layout.documents.movement import StarWheel
 from layout.documents.pitch import key_of
-from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.mechanics.blank import features_once
 from layout.mechanics.projection import Pattern, pattern_of
 from layout.mechanics.turning import turning_of
-from layout.play.plucks import Plucks
 from service.pages.disc_shown import Record, ShownDisc
 
 # A screen shows a disc at some 30 pixels a millimetre at most, and tells time to a millisecond: each number keeps one
@@ -71,11 +69,9 @@ def steady_turning(movement: Movement) -> tuple[tuple[float, float], ...]:
     Args:
         movement: The movement.
     """
-    from layout.hear.timeline import timeline_of  # noqa: PLC0415 -- all of the sound comes with it
+    from layout.hearing_walk import steady_turn_of  # noqa: PLC0415 -- all of the sound comes with it
 
-    none = Plucks(track_index=frozen_ints([]), sounds_s=frozen_floats([]), silent_from_s=frozen_floats([]))
-    table = timeline_of(movement, turning_of(movement), none, "steady").table
-    return tuple((time_s, math.degrees(turned_rad)) for time_s, turned_rad in table.tolist())
+    return tuple((time_s, math.degrees(turned_rad)) for time_s, turned_rad in steady_turn_of(movement).tolist())
 
 
 def movement_data(movement: Movement, cutter: Cutter) -> dict[str, Any]:

@@ -10,7 +10,7 @@ import pytest
 from layout import walk
 from layout.documents import Movement, read_settings
 from layout.hear import Asked
-from layout.hearing_walk import Hearing, hearing_of, performance_of
+from layout.hearing_walk import Hearing, hearing_of, performance_of, steady_turn_of
 from layout.write import write_layout_json
 from layout.write.laid_out import LaidOut
 from service.demo.compose import demo_tune
@@ -109,3 +109,10 @@ def test_notes_as_written_are_transposed_as_the_disc_is() -> None:
 def test_a_layout_of_another_movement_is_a_fault_of_the_program() -> None:
     with pytest.raises(ValueError, match="cannot be heard on tarnlight-17"):
         hearing_of(layout_json(SHIPPED[0]), SHIPPED[2], Asked())
+
+
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_a_movement_turns_by_itself_as_in_a_steady_hearing(movement: Movement) -> None:
+    _, hearing = heard(movement)
+
+    assert np.array_equal(steady_turn_of(movement), hearing.turning_table)
