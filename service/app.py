@@ -43,6 +43,7 @@ from service.orders.proofs import PURPOSE, ProofLinks
 from service.pages.disc import disc_routes
 from service.pages.own_routes import own_routes
 from service.pages.problems_shown import show_problems
+from service.pages.reference import reference_routes
 from service.parts import Parts, open_parts
 from service.planner import AnyPlanner, TheWalk
 from service.settings import ServiceSettings, settings_from
@@ -82,7 +83,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
-    for routes in _pages(desk):
+    for routes in _pages(desk, settings.places.public_url):
         app.register_blueprint(routes)
     app.after_request(with_safe_head)
     show_problems(app)
@@ -118,10 +119,11 @@ def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterat
     yield sign_in_routes(parts, _now)
 
 
-def _pages(desk: LayoutDesk) -> Iterator[Blueprint]:
+def _pages(desk: LayoutDesk, public_url: str | None) -> Iterator[Blueprint]:
     """What people see."""
     yield own_routes()
     yield disc_routes(desk)
+    yield reference_routes(public_url)
 
 
 def _now() -> datetime:

@@ -48,6 +48,7 @@ TABLE: dict[str, Access] = {
     "GET /problems/<name>": OPEN,
     "GET /assets/<asked_digest>/<path:name>": OPEN,
     "GET /sign-in": OPEN,
+    "GET /reference": OPEN,
     "GET /discs/<fingerprint>": ORDER_OR_LOOPBACK,
     "GET /sign-in/<secret>": COUNTED,
     "POST /sign-in": COUNTED,
