@@ -16,6 +16,7 @@ from service.api.desk import LayoutDesk
 from service.api.events import event_routes
 from service.api.exports import export_routes
 from service.api.failures import answer_failures
+from service.api.hearing_shelf import HearingShelf
 from service.api.hooks import hook_routes
 from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
@@ -39,6 +40,10 @@ from service.api.trial_pieces import trial_piece_routes
 from service.background.queue import Queue
 from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
+from service.pages.disc import disc_routes
+from service.pages.own_routes import own_routes
+from service.pages.problems_shown import show_problems
+from service.pages.reference import reference_routes
 from service.parts import Parts, open_parts
 from service.planner import AnyPlanner, TheWalk
 from service.settings import ServiceSettings, settings_from
@@ -70,20 +75,26 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     meter(app, counted)
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    for routes in (*_routes_of_layouts(planner or TheWalk(), parts), *_routes_of_orders(parts, queue)):
+    planner = planner or TheWalk()
+    desk = LayoutDesk(planner, LayoutCache(settings), settings.limits)
+    shelf = HearingShelf(settings)
+    for routes in (*_routes_of_layouts(planner, desk, parts, shelf), *_routes_of_orders(parts, queue, shelf)):
         app.register_blueprint(routes)
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
+    for routes in _pages(desk, settings.places.public_url):
+        app.register_blueprint(routes)
     app.after_request(with_safe_head)
+    show_problems(app)
     name_requests(app)
     return app
 
 
-def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]:
+def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is computed at once and kept for a while."""
     settings = parts.settings
-    yield layout_routes(LayoutDesk(planner, LayoutCache(settings), settings.limits), parts)
+    yield layout_routes(desk, parts, shelf)
     yield trial_piece_routes(parts)
     yield quote_routes(planner, parts)
     yield sheet_routes(settings.limits)
@@ -93,19 +104,26 @@ def _routes_of_layouts(planner: AnyPlanner, parts: Parts) -> Iterator[Blueprint]
     yield problem_pages()
 
 
-def _routes_of_orders(parts: Parts, queue: Queue) -> Iterator[Blueprint]:
+def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is kept, and who may see it."""
     links = ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
     yield order_routes(parts, queue.send)
     yield decision_routes(parts, queue.send, links)
-    yield order_file_routes(parts)
+    yield order_file_routes(parts, shelf)
     yield run_routes(parts)
     yield event_routes(parts)
-    yield proof_routes(parts, links)
+    yield proof_routes(parts, links, shelf)
     yield hook_routes(parts)
     yield export_routes(parts)
     yield key_routes(parts, _now)
     yield sign_in_routes(parts, _now)
+
+
+def _pages(desk: LayoutDesk, public_url: str | None) -> Iterator[Blueprint]:
+    """What people see."""
+    yield own_routes()
+    yield disc_routes(desk)
+    yield reference_routes(public_url)
 
 
 def _now() -> datetime:

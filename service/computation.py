@@ -14,6 +14,7 @@ if TYPE_CHECKING:
 
     from layout.documents import Cutter, Movement, Settings
     from layout.documents.sheets import SheetJob
+    from layout.hearing_walk import Asked, Bits, Hearing, Of, Output, Turn
     from layout.sheets.plan import SheetPlan
 
 
@@ -47,3 +48,27 @@ def trial_files(movement: Movement, cutter: Cutter) -> dict[str, bytes]:
         from layout.trial_walk import trial_files as files  # noqa: PLC0415 -- as the module says
 
     return files(movement, cutter)
+
+
+def hearing_asked(of: Of, turn: Turn) -> Asked:
+    """As `layout.hearing_walk.Asked`."""
+    from layout.hearing_walk import Asked  # noqa: PLC0415 -- as the module says
+
+    return Asked(of=of, turn=turn)
+
+
+def hearing_of(layout_json: bytes, movement: Movement, asked: Asked) -> Hearing:
+    """As `layout.hearing_walk.hearing_of`."""
+    from layout.hearing_walk import hearing_of as hearing  # noqa: PLC0415 -- as the module says
+
+    return hearing(layout_json, movement, asked)
+
+
+def write_hearing(hearing: Hearing, file: Output, bits: Bits | None) -> None:
+    """The hearing as WAV of so many bits, or as MIDI for None, as `layout.hearing_walk` writes them."""
+    from layout.hearing_walk import write_hearing_midi, write_wav  # noqa: PLC0415 -- as the module says
+
+    if bits is None:
+        file.write(write_hearing_midi(hearing))
+    else:
+        write_wav(hearing, file, bits=bits)

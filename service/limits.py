@@ -64,6 +64,15 @@ class Limits:
     cache_bytes: int = limit(
         256 * MIB, "bytes", "disk taken by kept layouts; packed, a full disc of the largest movement takes under 1 MiB"
     )
+    hearing_s: int = limit(
+        900, "seconds", "longest sound that is made of a disc: ten turns of the largest movement; a core takes 10 s"
+    )
+    hearing_bytes: int = limit(
+        512 * MIB, "bytes", "disk taken by kept sounds, the least recently heard goes first; a turn of 66 s takes 7 MiB"
+    )
+    hearing_kept_s: int = limit(
+        86_400, "seconds", "how long a sound is kept that nobody hears: a day, then the next that is made removes it"
+    )
     abandoned_part_s: int = limit(
         3600, "seconds", "age at which a file left half-written in the cache by a stopped worker is removed"
     )

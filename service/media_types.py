@@ -1,6 +1,8 @@
 """What the files of a disc are sent as."""
 
 JSON_MEDIA_TYPE = "application/json"
+WAV_MEDIA_TYPE = "audio/wav"  # what every browser knows; RFC 2361 registers audio/vnd.wave
+MIDI_MEDIA_TYPE = "audio/midi"
 MEDIA_TYPES = {
     "disc.dxf": "image/vnd.dxf",
     "record.dxf": "image/vnd.dxf",

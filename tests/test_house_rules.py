@@ -25,6 +25,7 @@ TYPE_MODULES = {
     "arrange": "layout.arrange.arrangement",
     "place": "layout.place.disc",
     "play": "layout.play.plucks",
+    "hear": "layout.hear.hearing",
     "check": "layout.check.finding",
     "report": "layout.report.report",
     "cut": "layout.cut.plan",
@@ -37,8 +38,8 @@ TYPE_MODULES = {
 # Reading back must not lean on what was asked for or planned, only on what a disc is.
 READ_BACK_MAY_IMPORT = {"layout.place.disc", "layout.play.plucks", "layout.check.finding"}
 OPEN_TO_EVERY_STAGE = ("layout.documents", "layout.mechanics", "layout.errors", "layout.limits", "layout.version")
-# What composes stages: the walk of a disc, and two short ones that begin with documents alone.
-THE_WALKS = {"layout.walk", "layout.sheet_walk", "layout.trial_walk"}
+# What composes stages: the walk of a disc, two short ones that begin with documents alone, one from disc to sound.
+THE_WALKS = {"layout.walk", "layout.sheet_walk", "layout.trial_walk", "layout.hearing_walk"}
 
 MOST_MODULE_LINES = 400
 MOST_FUNCTION_LINES = 50
@@ -51,6 +52,7 @@ UNIT_SUFFIXES = (
 FIELDS_WITHOUT_UNIT = {
     "Shape.bulges": "a DXF bulge is a plain number, tan of a quarter of the arc's angle",
     "Outlines.bulges": "as in Shape",
+    "Hearing.turning_table": "its rows are moments and angles",
     "Row.coefficients": "a row of a program joins columns of any unit",
     "Row.least": "as coefficients",
     "Row.most": "as coefficients",

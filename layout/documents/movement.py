@@ -9,7 +9,7 @@ from collections.abc import Mapping
 from itertools import pairwise
 from typing import Annotated, Any, Literal, Self
 
-from pydantic import Discriminator, Field, PrivateAttr, Tag, field_validator, model_validator
+from pydantic import Discriminator, Field, PrivateAttr, Tag, model_validator
 
 from layout.documents.drive import Drive
 from layout.documents.pitch import key_of
@@ -32,13 +32,13 @@ from layout.documents.reading import (
     moved,
     read_json,
 )
+from layout.documents.tooth import Quality, Tooth, unstated
 from layout.errors import DocumentError
 
 MOST_TRACKS = 200  # tracks; far above any comb, keeps a document from being made slow
 MOST_TEETH = 400  # teeth; two combs of MOST_TRACKS
 MOST_FEATURES = 400  # holes of all feature rows; a drive row of a large disc has under 200
 MOST_ROWS = 32  # feature rows, and keep-out rings, and stages of a train; a disc has a few of each
-MOST_CENTS = 1200.0  # cents; an octave, by which no comb is out of tune
 
 
 class Feature(Part):
@@ -150,25 +150,6 @@ def _or_equally_spaced(schema: dict[str, Any]) -> None:
     schema["anyOf"] = [listed, TrackRange.model_json_schema()]
 
 
-class Tooth(Part):
-    """One tuned tooth of the comb and the track that plucks it."""
-
-    tooth: Annotated[int, Field(ge=1)]
-    track: Annotated[int, Field(ge=1)]
-    pitch: str
-    cents: Annotated[Offset, Field(ge=-MOST_CENTS, le=MOST_CENTS)] = 0.0
-    damped: bool = True
-    usable: bool = True
-    stiffness_n_per_mm: Length | None = None
-    lift_mm: Length | None = None
-
-    @field_validator("pitch")
-    @classmethod
-    def _is_a_pitch(cls, pitch: str) -> str:
-        key_of(pitch)
-        return pitch
-
-
 def _star_wheel_kind(value: Json) -> str:
     keys = value if isinstance(value, Mapping) else getattr(value, "__dict__", {})
     return "measured" if not ({"points", "tip_radius_mm", "axis_depth_mm"} & set(keys)) else "computed"
@@ -180,7 +161,8 @@ _UNION_TAGS = frozenset({"computed", "measured"})
 class Movement(Part):
     """A movement, resolved: plain numbers, every track listed, every rule between fields kept.
 
-    Teeth of one track have one pitch: a projection sounds all of them at once.
+    Teeth of one track have one pitch: a projection sounds all of them at once. `tooth_quality` is the Q of every
+    tooth that states none of its own.
     """
 
     format: Literal["discwright-movement/1"]
@@ -203,6 +185,7 @@ class Movement(Part):
     damper_arc_mm: LengthOrZero = 0.0
     damper_recovery_s: TimeOrZero = 0.0
     drive: Drive | None = None
+    tooth_quality: Quality | None = Field(default=None, exclude_if=unstated)
     tracks: Annotated[
         tuple[Track, ...], Field(min_length=1, max_length=MOST_TRACKS, json_schema_extra=_or_equally_spaced)
     ]

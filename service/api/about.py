@@ -6,9 +6,11 @@ from layout.version import ENGINE_VERSION
 from service.api.answers import document_response, json_response
 from service.api.asking import open_to_all
 from service.api.describing import describes
+from service.api.media import prefers_html
 from service.api.operations import about
 from service.limits import Limits
 
+FIRST_PAGE = "/new"  # where people begin
 ADDRESSES = {
     "movements": "/v1/movements",
     "cutters": "/v1/cutters",
@@ -33,9 +35,13 @@ def about_routes(limits: Limits) -> Blueprint:
     @describes(about.ADDRESSES)
     @open_to_all
     def tell_addresses() -> Response:
-        return document_response(
-            {"service": "discwright", "engine_version": ENGINE_VERSION, "links": ADDRESSES}, request
-        )
+        if prefers_html(request):
+            response = Response(status=303, headers={"Location": FIRST_PAGE})
+        else:
+            told = {"service": "discwright", "engine_version": ENGINE_VERSION, "links": ADDRESSES}
+            response = document_response(told, request)
+        response.vary.add("Accept")
+        return response
 
     @routes.get("/healthz")
     @describes(about.HEALTH)

@@ -10,6 +10,7 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
+from layout.documents import Movement
 from layout.file_names import CUTTING_FILES, FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
@@ -17,9 +18,11 @@ from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
+from service.api.hearing_shelf import HearingShelf
+from service.api.hearings import plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
-from service.api.operations import layouts
+from service.api.operations import hearings, layouts
 from service.api.posted import read_posted
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
@@ -40,12 +43,13 @@ ANSWERS: dict[str, str | None] = {
 ANSWERS_FOR_SEVERAL: dict[str, str | None] = {JSON_MEDIA_TYPE: None, ZIP_MEDIA_TYPE: ALL_FILES}
 
 
-def layout_routes(desk: LayoutDesk, parts: Parts) -> Blueprint:
+def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Blueprint:
     """The routes of layouts.
 
     Args:
         desk: Computes and keeps layouts.
         parts: Read for limits, and for the documents that owners keep.
+        shelf: Keeps how they sound.
     """
     limits = parts.settings.limits
     routes = Blueprint("layouts", __name__, url_prefix="/v1/layouts")
@@ -89,7 +93,22 @@ def layout_routes(desk: LayoutDesk, parts: Parts) -> Blueprint:
         response.make_conditional(request)
         return response
 
+    _add_hearings(routes, desk, shelf)
     return routes
+
+
+def _add_hearings(routes: Blueprint, desk: LayoutDesk, shelf: HearingShelf) -> None:
+    @routes.get("/<fingerprint>/hearing.wav")
+    @describes(hearings.LAYOUT_SOUND)
+    @open_on_loopback(Scope.ORDER)
+    def give_sound(fingerprint: str) -> Response:
+        return sound_response(shelf, *_heard(_found(desk, fingerprint)), request)
+
+    @routes.get("/<fingerprint>/hearing.mid")
+    @describes(hearings.LAYOUT_PLUCKS)
+    @open_on_loopback(Scope.ORDER)
+    def give_plucks(fingerprint: str) -> Response:
+        return plucks_response(shelf, *_heard(_found(desk, fingerprint)), request)
 
 
 class LayoutTeller:
@@ -194,6 +213,12 @@ class LayoutTeller:
     def _tag(self, kept: KeptLayout, what: str, reason: str | None) -> str:
         mark = "" if kept.good_to_cut or reason is None else "-" + hashlib.sha256(reason.encode()).hexdigest()[:16]
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
+
+
+def _heard(kept: KeptLayout) -> tuple[tuple[bytes, Movement], str]:
+    """What a layout is heard from, and the name of its layout.json."""
+    name = download_name(_named(kept, not_good=False), "layout.json")
+    return (kept.files["layout.json"], kept.inputs.read().movement), name
 
 
 def _named(kept: KeptLayout, *, not_good: bool) -> NamedDisc:

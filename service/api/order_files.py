@@ -2,13 +2,16 @@
 
 from flask import Blueprint, Request, Response, request
 
+from layout.documents import Movement, read_movement
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES
 from service.api.asking import needs
 from service.api.describing import describes
+from service.api.hearing_shelf import HearingShelf
+from service.api.hearings import plucks_response, sound_response
 from service.api.models.orders import MOST_REVISION, FileQuery
-from service.api.operations import orders
+from service.api.operations import hearings, orders
 from service.api.order_answers import order_address
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
@@ -18,18 +21,21 @@ from service.orders.views import FileView, PlanView, plan_view
 from service.parts import Parts
 
 
-def order_file_routes(parts: Parts) -> Blueprint:
-    """The routes of files of orders."""
+def order_file_routes(parts: Parts, shelf: HearingShelf) -> Blueprint:
+    """The routes of files of orders, and of how their discs sound."""
     routes = Blueprint("order_files", __name__, url_prefix="/v1/orders/<order_id>/plans")
+
+    def plan_of(asker: Asker, order_id: str, revision: int) -> PlanView | None:
+        with parts.store.reading() as session:
+            order = find_order(session, asker, order_id)
+            return plan_view(session, order.id, revision) if revision <= MOST_REVISION else None
 
     @routes.get("/<int:revision>/files/<int:disc>/<name>")
     @describes(orders.FILE)
     @needs(Scope.READ)
     def give(asker: Asker, order_id: str, revision: int, disc: int, name: str) -> Response:
         asked = read_arguments(request, FileQuery)
-        with parts.store.reading() as session:
-            order = find_order(session, asker, order_id)
-            plan = plan_view(session, order.id, revision) if revision <= MOST_REVISION else None
+        plan = plan_of(asker, order_id, revision)
         file = file_of(plan, disc, name)
         _check_given(plan, file, asked)
         response = file_response(parts, file, request)
@@ -37,7 +43,31 @@ def order_file_routes(parts: Parts) -> Blueprint:
             response.headers["Link"] = f'<{order_address(order_id)}>; rel="latest-version"'  # RFC 5829
         return response
 
+    @routes.get("/<int:revision>/files/<int:disc>/hearing.wav")
+    @describes(hearings.ORDER_SOUND)
+    @needs(Scope.READ)
+    def give_sound(asker: Asker, order_id: str, revision: int, disc: int) -> Response:
+        return sound_response(shelf, *heard_of(parts, plan_of(asker, order_id, revision), disc), request)
+
+    @routes.get("/<int:revision>/files/<int:disc>/hearing.mid")
+    @describes(hearings.ORDER_PLUCKS)
+    @needs(Scope.READ)
+    def give_plucks(asker: Asker, order_id: str, revision: int, disc: int) -> Response:
+        return plucks_response(shelf, *heard_of(parts, plan_of(asker, order_id, revision), disc), request)
+
     return routes
+
+
+def heard_of(parts: Parts, plan: PlanView | None, disc: int) -> tuple[tuple[bytes, Movement], str]:
+    """What a disc of a plan is heard from, as it was planned, and the name its layout.json is saved by.
+
+    Raises:
+        ProblemError: The plan has no such disc.
+        StoreError: A file cannot be read.
+    """
+    file = file_of(plan, disc, "layout.json")
+    digest = plan.inputs["movement"]["sha256"] if plan is not None else ""
+    return (parts.files.read(file.sha256), read_movement(parts.files.read(digest))), file.saved_as
 
 
 def file_of(plan: PlanView | None, disc: int, name: str) -> FileView:

@@ -76,6 +76,13 @@ KINDS = (
         what_to_do="Layouts are kept for a while only. Post the tune again: the same input gives the same layout.",
     ),
     ProblemKind(
+        name="hearing-too-long",
+        status=422,
+        title="The sound would be longer than is made",
+        what_to_do="most_s says how long it may be. Ask for hearing.mid, or for of=disc: as written, a tune is heard "
+        "to its end, though the disc has only one turn for it. `discwright hear` has no such limit.",
+    ),
+    ProblemKind(
         name="route-unknown",
         status=404,
         title="There is nothing at this address",

@@ -6,9 +6,11 @@ from service.api.answers import json_response
 from service.api.asking import open_but_counted
 from service.api.bodies import body_of
 from service.api.describing import describes
+from service.api.hearing_shelf import HearingShelf
+from service.api.hearings import plucks_response, sound_response
 from service.api.models.proofs import VerdictBody
-from service.api.operations import proofs
-from service.api.order_files import file_of, file_response
+from service.api.operations import hearings, proofs
+from service.api.order_files import file_of, file_response, heard_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_text
 from service.orders.deciding import customer_says
@@ -22,7 +24,7 @@ from service.store.tables import Order
 SHOWN = ("disc.svg", "report.json")  # what a customer may see of each disc
 
 
-def proof_routes(parts: Parts, links: ProofLinks) -> Blueprint:
+def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Blueprint:
     """The routes of proofs."""
     routes = Blueprint("proofs", __name__, url_prefix="/v1/proofs")
 
@@ -71,7 +73,24 @@ def proof_routes(parts: Parts, links: ProofLinks) -> Blueprint:
         customer_says(parts.store, proof.order_id, proof.revision, body.verdict, by=body.by, note=body.note)
         return json_response({"verdict": body.verdict, "revision": proof.revision})
 
+    _add_hearings(routes, parts, links, shelf)
     return routes
+
+
+def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: HearingShelf) -> None:
+    @routes.get("/<text>/files/<int:disc>/hearing.wav")
+    @describes(hearings.PROOF_SOUND)
+    @open_but_counted
+    def give_sound(text: str, disc: int) -> Response:
+        _, plan = _shown(parts, _proof(links, text))
+        return sound_response(shelf, *heard_of(parts, plan, disc), request)
+
+    @routes.get("/<text>/files/<int:disc>/hearing.mid")
+    @describes(hearings.PROOF_PLUCKS)
+    @open_but_counted
+    def give_plucks(text: str, disc: int) -> Response:
+        _, plan = _shown(parts, _proof(links, text))
+        return plucks_response(shelf, *heard_of(parts, plan, disc), request)
 
 
 def _proof(links: ProofLinks, text: str) -> Proof:

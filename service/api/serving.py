@@ -1,13 +1,14 @@
 """Files out of the store: entity tags, digests, ranges, names, and caching for ever, since they never change."""
 
 import base64
+from collections.abc import Iterator
 from dataclasses import dataclass
+from typing import Protocol
 
 from flask import Request, Response
 from werkzeug.http import parse_range_header
 
 from service.api.problems import ProblemError
-from service.store.files import FileStore
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -31,7 +32,14 @@ class Served:
     max_age_s: int
 
 
-def served(files: FileStore, file: Served, asked: Request) -> Response:
+class Pieces(Protocol):
+    """What keeps files by their digests, such as the store of files."""
+
+    def chunks(self, digest: str, *, start: int = 0, end: int | None = None) -> Iterator[bytes]:
+        """A file in pieces, from byte `start` up to but without `end`."""
+
+
+def served(files: Pieces, file: Served, asked: Request) -> Response:
     """A file, or the range of it that is asked for, read piece by piece.
 
     The digest of the whole is told by Repr-Digest, and by Content-Digest where the whole is sent (RFC 9530). Of

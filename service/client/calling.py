@@ -224,3 +224,11 @@ def _problem(answer: Answer) -> ProblemError:
 def _wait_told(answer: Answer, usual_s: float) -> float:
     text = answer.headers.get("retry-after", "")
     return float(text) if text.isdigit() else usual_s
+
+
+class Group:
+    """What every group of operations is: methods that send by one caller."""
+
+    def __init__(self, caller: Caller) -> None:
+        """Note by what they send."""
+        self._caller = caller

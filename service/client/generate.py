@@ -1,7 +1,7 @@
 """Writes the typed part of the client from an API document.
 
 `python -m service.client.generate FILE` reads the document, or - for standard input, and writes the folder
-`shapes` and `operations.py` beside this file. Where the service runs, curl gives the document at /openapi.json.
+`shapes` and `operations` beside this file. Where the service runs, curl gives the document at /openapi.json.
 """
 
 import json
@@ -22,6 +22,13 @@ TYPES = {"string": "str", "integer": "int", "number": "float", "boolean": "bool"
 RECORDS, FILE = "records", "LayoutRecord"  # the module, and the schema of which all of it is part
 COMMON = "common"  # the module of shapes that several groups of operations share
 MOST = 120  # characters of a line
+# What methods may need, by where it is imported from.
+IMPORTS = {
+    "collections.abc": ["Mapping"],
+    "typing": ["Any", "cast"],
+    "service.client": ["shapes"],
+    "service.client.calling": ["Answer", "Fields", "Form", "Group", "Query", "once", "place"],
+}
 USAGE = "usage: python -m service.client.generate FILE, or - for standard input\n"
 HEAD = '"""{what} Written by generate.py from the API document; not to be changed by hand."""\n\n'
 
@@ -70,40 +77,52 @@ def _shapes_module(module: str, names: list[str], homes: dict[str, str], schemas
     return HEAD.format(what=said) + "".join(imports) + space + text + "\n"
 
 
-def operations_of(document: Any) -> str:
-    """The module with a method for each operation."""
-    methods = [
-        _method(verb.upper(), path, operation)
-        for path, operations in document["paths"].items()
-        for verb, operation in operations.items()
-    ]
+def operations_of(document: Any) -> dict[str, str]:
+    """The package with a method for each operation, by module: one for each group of operations."""
+    methods: dict[str, list[str]] = {}
+    for path, operations in document["paths"].items():
+        for verb, operation in operations.items():
+            [tag] = operation["tags"]
+            methods.setdefault(tag.replace(" ", "_"), []).append(_method(verb.upper(), path, operation))
+    groups = {module: "Of" + "".join(map(str.capitalize, module.split("_"))) for module in sorted(methods)}
+    handed_on = [f"from service.client.operations.{module} import {name}" for module, name in groups.items()]
+    face = "\n".join([*handed_on, "", "", "class Operations(", *(f"    {name}," for name in groups.values()), "):", ""])
+    face += '    """A method for each operation of the API."""\n'
+    return {
+        "__init__.py": HEAD.format(what="The operations of the API.") + face,
+        **{f"{module}.py": _operations_module(module, name, methods[module]) for module, name in groups.items()},
+    }
+
+
+def _operations_module(module: str, name: str, methods: list[str]) -> str:
     body = "\n\n".join(methods)
-    imports = (
-        "from collections.abc import Mapping\nfrom typing import Any, cast\n\n"
-        "from service.client import shapes\n"
-        "from service.client.calling import Answer, Caller, Fields, Form, Query, once, place\n"
-    )
-    head = (
-        "class Operations:\n"
-        '    """A method for each operation of the API."""\n\n'
-        "    def __init__(self, caller: Caller) -> None:\n        self._caller = caller\n\n"
-    )
-    return HEAD.format(what="The operations of the API.") + imports + "\n\n" + head + body + "\n"
+    code = re.sub('""".*?"""', "", body)
+    said = module.replace("_", " ")
+    imports = [
+        (source, [word for word in words if word == "Group" or re.search(rf"\b{word}\b", code)])
+        for source, words in IMPORTS.items()
+    ]
+    lines = [f"from {source} import {', '.join(words)}\n" for source, words in imports if words]
+    own = "".join(line for line in lines if "service" in line)
+    others = "".join(line for line in lines if "service" not in line)
+    head = f'class {name}(Group):\n    """Operations: {said}."""\n\n'
+    between = "\n" * bool(others)
+    return HEAD.format(what=f"Operations: {said}.") + others + between + own + "\n\n" + head + body + "\n"
 
 
 def main(arguments: list[str]) -> int:
-    """Write both modules; gives the exit code."""
+    """Write both packages; gives the exit code."""
     if len(arguments) != 1:
         sys.stderr.write(USAGE)
         return 2
     text = sys.stdin.read() if arguments[0] == "-" else Path(arguments[0]).read_text(encoding="utf-8")
     document = json.loads(text)
     here = Path(__file__).parent
-    shutil.rmtree(here / "shapes", ignore_errors=True)  # a group that is no more leaves no module
-    (here / "shapes").mkdir()
-    for name, content in shapes_of(document).items():
-        (here / "shapes" / name).write_text(content, encoding="utf-8")
-    (here / "operations.py").write_text(operations_of(document), encoding="utf-8")
+    for package, modules in (("shapes", shapes_of(document)), ("operations", operations_of(document))):
+        shutil.rmtree(here / package, ignore_errors=True)  # a group that is no more leaves no module
+        (here / package).mkdir()
+        for name, content in modules.items():
+            (here / package / name).write_text(content, encoding="utf-8")
     return 0
 
 

@@ -27,7 +27,7 @@ EXAMPLE = """example:
 # In the order in which help lists them. The module of one is imported when it is asked for: most need much that the
 # others do not.
 COMMANDS = (
-    *("plan", "run", "check", "sheets", "trial-piece", "movements", "movement", "cutters", "cutter"),
+    *("plan", "run", "hear", "check", "sheets", "trial-piece", "movements", "movement", "cutters", "cutter"),
     *("serve", "web", "work", "migrate", "check-setup", "keys"),
     *("backup", "restore", "export"),
 )

@@ -203,3 +203,35 @@ def test_numbers_of_a_winding_far_outside_any_clockwork_are_refused(field: str, 
 
     with pytest.raises(DocumentError, match=f"/drive/winding/{field}"):
         read_movement(text)
+
+
+def test_what_a_movement_does_not_state_of_its_sound_is_left_out_of_a_dump() -> None:
+    plain = movement_with().model_dump(mode="json")
+    stated = movement_with({"tooth_quality": 900, "teeth/0/quality": 400, "teeth/1/end_mass_ratio": 0.5})
+
+    assert ("tooth_quality" in plain, {"quality", "end_mass_ratio"} & set(plain["teeth"][0])) == (False, set())
+    assert stated.model_dump(mode="json")["tooth_quality"] == 900
+    assert stated.model_dump(mode="json")["teeth"][0]["quality"] == 400
+    assert stated.model_dump(mode="json")["teeth"][1]["end_mass_ratio"] == 0.5
+
+
+def test_numbers_of_the_sound_may_be_stated_with_their_worth() -> None:
+    movement = movement_with({"tooth_quality": {"value": 900, "plus_minus": 200}})
+
+    assert (movement.tooth_quality, movement.plus_minus("/tooth_quality")) == (900, 200)
+
+
+@pytest.mark.parametrize(
+    ("field", "value", "limit"),
+    [
+        ("tooth_quality", 0.5, "greater than or equal to 1,"),
+        ("teeth/0/quality", 2e6, "less than or equal to 1000000"),
+        ("teeth/0/end_mass_ratio", -0.1, "greater than or equal to 0"),
+        ("teeth/0/end_mass_ratio", 101, "less than or equal to 100"),
+    ],
+)
+def test_a_sound_no_tooth_can_have_is_refused(field: str, value: float, limit: str) -> None:
+    with pytest.raises(DocumentError, match=limit) as caught:
+        movement_with({field: value})
+
+    assert caught.value.problems[0].pointer == f"/{field}"

@@ -46,6 +46,10 @@ TABLE: dict[str, Access] = {
     "GET /metrics": ADMIN_OR_LOOPBACK,
     "GET /problems": OPEN,
     "GET /problems/<name>": OPEN,
+    "GET /assets/<asked_digest>/<path:name>": OPEN,
+    "GET /sign-in": OPEN,
+    "GET /reference": OPEN,
+    "GET /discs/<fingerprint>": ORDER_OR_LOOPBACK,
     "GET /sign-in/<secret>": COUNTED,
     "POST /sign-in": COUNTED,
     "POST /sign-out": ANY_KEY,
@@ -68,6 +72,8 @@ TABLE: dict[str, Access] = {
     "POST /v1/layouts": ORDER_OR_LOOPBACK,
     "GET /v1/layouts/<fingerprint>": ORDER_OR_LOOPBACK,
     "GET /v1/layouts/<fingerprint>/<file_name>": ORDER_OR_LOOPBACK,
+    "GET /v1/layouts/<fingerprint>/hearing.wav": ORDER_OR_LOOPBACK,
+    "GET /v1/layouts/<fingerprint>/hearing.mid": ORDER_OR_LOOPBACK,
     "POST /v1/sheets": ORDER_OR_LOOPBACK,
     "POST /v1/trial-pieces": ORDER_OR_LOOPBACK,
     "GET /v1/orders": READ,
@@ -76,6 +82,8 @@ TABLE: dict[str, Access] = {
     "DELETE /v1/orders/<order_id>": ORDER,
     "GET /v1/orders/<order_id>/events": READ,
     "GET /v1/orders/<order_id>/plans/<int:revision>/files/<int:disc>/<name>": READ,
+    "GET /v1/orders/<order_id>/plans/<int:revision>/files/<int:disc>/hearing.wav": READ,
+    "GET /v1/orders/<order_id>/plans/<int:revision>/files/<int:disc>/hearing.mid": READ,
     "POST /v1/orders/<order_id>/cancel": ORDER,
     "POST /v1/orders/<order_id>/proof-links": ORDER,
     "POST /v1/orders/<order_id>/release": RELEASE,
@@ -83,6 +91,8 @@ TABLE: dict[str, Access] = {
     "POST /v1/orders/<order_id>/reports": RELEASE,
     "GET /v1/proofs/<text>": COUNTED,
     "GET /v1/proofs/<text>/files/<int:disc>/<name>": COUNTED,
+    "GET /v1/proofs/<text>/files/<int:disc>/hearing.wav": COUNTED,
+    "GET /v1/proofs/<text>/files/<int:disc>/hearing.mid": COUNTED,
     "POST /v1/proofs/<text>/verdict": COUNTED,
     "POST /v1/quotes": ORDER,
     "GET /v1/quotes/<quote_id>": READ,
@@ -115,7 +125,7 @@ BODIES: dict[str, dict[str, Any]] = {
     "PATCH /v1/hooks/<hook_id>": {"for_all_orders": True},
 }
 # Parts of a path that name what is the same for all who may ask, or opens something by itself.
-OF_NOBODY = {"name", "secret", "text", "document_id", "fingerprint", "file_name", "revision", "disc"}
+OF_NOBODY = {"asked_digest", "name", "secret", "text", "document_id", "fingerprint", "file_name", "revision", "disc"}
 # Those that name what belongs to an owner, each with an id of its form that was never made.
 OWNED = {
     "key_id": "key_" + 32 * "0",

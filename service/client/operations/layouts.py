@@ -1,0 +1,36 @@
+"""Operations: layouts. Written by generate.py from the API document; not to be changed by hand."""
+
+from collections.abc import Mapping
+from typing import Any, cast
+
+from service.client import shapes
+from service.client.calling import Answer, Form, Group, Query, place
+
+
+class OfLayouts(Group):
+    """Operations: layouts."""
+
+    def make_layout(self, parts: Mapping[str, bytes | Mapping[str, Any]], query: Query | None = None) -> Answer:
+        """Make a layout of a tune."""
+        path = "/v1/layouts"
+        return self._caller.send("POST", path, body=Form(parts), query=query)
+
+    def tell_layout(self, fingerprint: str, query: Query | None = None) -> shapes.LayoutAnswer:
+        """A layout that is kept."""
+        path = place("/v1/layouts/{fingerprint}", {"fingerprint": fingerprint})
+        return cast("shapes.LayoutAnswer", self._caller.json("GET", path, query=query))
+
+    def tell_layout_file(self, fingerprint: str, file_name: str, query: Query | None = None) -> Answer:
+        """A file of a layout."""
+        path = place("/v1/layouts/{fingerprint}/{file_name}", {"fingerprint": fingerprint, "file_name": file_name})
+        return self._caller.send("GET", path, query=query)
+
+    def tell_layout_plucks(self, fingerprint: str, query: Query | None = None) -> Answer:
+        """What a layout plays, as MIDI."""
+        path = place("/v1/layouts/{fingerprint}/hearing.mid", {"fingerprint": fingerprint})
+        return self._caller.send("GET", path, query=query)
+
+    def tell_layout_sound(self, fingerprint: str, query: Query | None = None) -> Answer:
+        """A layout as it sounds."""
+        path = place("/v1/layouts/{fingerprint}/hearing.wav", {"fingerprint": fingerprint})
+        return self._caller.send("GET", path, query=query)

@@ -1,0 +1,39 @@
+// Asks the API of this service, with the token that a signed-in browser's writes must bring.
+import { text } from "./texts.js";
+
+export class Problem extends Error {
+  constructor(told) {
+    super(told.detail || told.title);
+    this.told = told;
+  }
+}
+
+let token = null;
+
+async function tokenOfThisBrowser() {
+  if (token === null) {
+    const answer = await fetch("/v1/keys/me", { headers: { Accept: "application/json" } });
+    token = answer.ok ? (await answer.json()).csrf_token || "" : "";
+  }
+  return token;
+}
+
+// Gives { status, headers, value }; value is JSON where the answer is. Raises Problem in the API's words.
+export async function ask(method, path, { json, form, body, headers = {} } = {}) {
+  const head = { Accept: "application/json", ...headers };
+  if (method !== "GET") {
+    const own = await tokenOfThisBrowser();
+    if (own) head["X-CSRF-Token"] = own;
+  }
+  if (json !== undefined) head["Content-Type"] = "application/json";
+  let answer;
+  try {
+    answer = await fetch(path, { method, headers: head, body: json === undefined ? form ?? body : JSON.stringify(json) });
+  } catch {
+    throw new Problem({ title: text("common.unreachable"), detail: text("common.unreachable") });
+  }
+  const kind = answer.headers.get("Content-Type") || "";
+  const value = kind.includes("json") ? await answer.json() : null;
+  if (!answer.ok) throw new Problem(value ?? { detail: text("common.unexpected", { status: answer.status }) });
+  return { status: answer.status, headers: answer.headers, value };
+}

@@ -1,0 +1,95 @@
+"""/discs/<fingerprint>: a disc to look at, to hear, to follow through its turn, and its files."""
+
+import json
+import re
+from urllib.parse import urlencode
+
+from flask import Blueprint, Request, Response, request
+
+from layout.file_names import files_for
+from service.access.scopes import Scope
+from service.api.asking import asker_or_none, open_on_loopback
+from service.api.desk import LayoutDesk
+from service.api.layout_cache import KeptLayout
+from service.api.models.layouts import DespiteQuery
+from service.api.problems import ProblemError
+from service.api.request_models import read_arguments
+from service.pages.disc_data import disc_data
+from service.pages.disc_plots import plots_of
+from service.pages.disc_shown import ShownDisc
+from service.pages.disc_told import cautions_of, facts_of, files_of, findings_of, lost_of, not_asked_of, verdict_of
+from service.pages.page_views import gives_page
+from service.pages.rendering import page
+
+FINGERPRINT = re.compile(r"[0-9a-f]{16}")
+
+
+def disc_routes(desk: LayoutDesk) -> Blueprint:
+    """The page of a layout.
+
+    Args:
+        desk: Where layouts are kept: the one that the API's routes of layouts have.
+    """
+    routes = Blueprint("disc_pages", __name__)
+
+    @routes.get("/discs/<fingerprint>")
+    @gives_page
+    @open_on_loopback(Scope.ORDER)
+    def show_disc(fingerprint: str) -> Response:
+        reason = read_arguments(request, DespiteQuery).despite_findings
+        asker = asker_or_none()
+        owner_id = None if asker is None else asker.owner_id
+        kept = desk.find(fingerprint, owner_id) if FINGERPRINT.fullmatch(fingerprint) else None
+        if kept is None:
+            raise ProblemError(
+                name="layout-unknown",
+                detail=f"no layout is kept under {fingerprint[:64]!r}; make the disc again: the same tune, documents "
+                "and settings give the same layout and the same fingerprint",
+            )
+        return disc_page(request, _shown(kept, reason))
+
+    return routes
+
+
+def disc_page(asked: Request, shown: ShownDisc) -> Response:
+    """The page of a disc, wherever it comes from.
+
+    Args:
+        asked: The request.
+        shown: The disc.
+    """
+    movement = shown.movement
+    return page(
+        asked,
+        "disc.html",
+        scripts=("disc",),
+        shown=shown,
+        data=disc_data(shown),
+        verdict=verdict_of(shown),
+        facts=facts_of(shown),
+        lost=lost_of(shown.report),
+        not_asked=not_asked_of(shown.report),
+        files=files_of(shown),
+        findings=findings_of(shown.layout),
+        cautions=cautions_of(shown),
+        plots=plots_of(shown.report, before_music_deg=movement.before_music_deg, revolution_s=movement.revolution_s),
+    )
+
+
+def _shown(kept: KeptLayout, reason: str | None) -> ShownDisc:
+    read = kept.inputs.read()
+    given_despite = None if kept.good_to_cut else reason
+    base = f"/v1/layouts/{kept.fingerprint}"
+    asking = "" if given_despite is None else f"?{urlencode({'despite_findings': given_despite})}"
+    made = files_for(read.cutter)
+    given = made if given_despite is not None else [name for name in made if name in kept.files]
+    return ShownDisc(
+        layout=json.loads(kept.files["layout.json"]),
+        report=json.loads(kept.files["report.json"]),
+        movement=read.movement,
+        cutter=read.cutter,
+        files={name: f"{base}/{name}{asking}" for name in given},
+        hearing={of: f"{base}/hearing.wav?of={of}" for of in ("disc", "written")},
+        despite_findings=given_despite,
+        asks_reason=not kept.good_to_cut,
+    )

@@ -1,0 +1,39 @@
+"""Problems as pages: what a program gets as problem details, a person gets in words, and a way on."""
+
+import json
+
+from flask import Flask, Response, request
+
+from service.api.media import prefers_html
+from service.api.problems import PROBLEM_MEDIA_TYPE
+from service.pages.rendering import page
+
+API = "/v1/"
+UNAUTHORIZED = 401
+
+
+def show_problems(app: Flask) -> None:
+    """Show problems as pages to whom asks for pages; what lies under /v1 answers programs and stays as it is."""
+
+    @app.after_request
+    def show(response: Response) -> Response:
+        if response.mimetype != PROBLEM_MEDIA_TYPE or request.path.startswith(API):
+            return response
+        if request.method != "GET" or not prefers_html(request):
+            response.vary.add("Accept")
+            return response
+        problem = json.loads(response.get_data())
+        template = "sign_in.html" if response.status_code == UNAUTHORIZED else "problem.html"
+        query = request.query_string.decode("latin-1")
+        shown = page(
+            request,
+            template,
+            status=response.status_code,
+            problem=problem,
+            back=request.path + (f"?{query}" if query else ""),
+        )
+        for name in ("Retry-After", "WWW-Authenticate", "RateLimit", "RateLimit-Policy"):
+            if name in response.headers:
+                shown.headers[name] = response.headers[name]
+        shown.vary.add("Accept")
+        return shown
