@@ -1,5 +1,7 @@
 """A worker in this process, with real children: orders are planned, fail, are thrown away or handed back."""
 
+import subprocess
+import sys
 import threading
 import time
 from collections.abc import Callable, Iterator
@@ -110,6 +112,24 @@ def test_orders_are_planned_while_the_queue_is_away(shop: Parts, monkeypatch: py
 
     with at_work(away):
         wait_for_state(shop, order_id, State.READY)
+
+
+def test_a_signal_that_comes_to_another_thread_or_at_a_bad_moment_is_heeded() -> None:
+    # A handler in Python runs between two steps of the main thread, which takes none while it waits.
+    lines = (
+        "import signal, threading, time; from service.background.worker import work_until_told\n"
+        "class Idle:\n"
+        "    def start(self): pass\n"
+        "    def stop(self, hurry): return True\n"
+        "def tell():\n"
+        "    time.sleep(0.5)\n"
+        "    signal.pthread_kill(threading.get_ident(), signal.SIGTERM)\n"
+        "print(work_until_told(Idle(), threading.Thread(target=tell).start))\n"
+    )
+
+    ended = subprocess.run([sys.executable, "-c", lines], capture_output=True, text=True, timeout=20, check=True)
+
+    assert ended.stdout == "True\n"
 
 
 def test_an_order_whose_worker_has_gone_is_taken_over(shop: Parts) -> None:
