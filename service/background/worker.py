@@ -122,20 +122,23 @@ def work_until_told(worker: Worker, say_started: Callable[[], None] = lambda: No
     Returns:
         Whether it stopped with nothing in hand.
     """
-    # A handler only writes into a pipe: it may run while this very thread holds any lock.
+    # The interpreter writes into the pipe the moment a signal comes. A handler of our own would run between two steps
+    # of this thread: never, where the signal comes to another thread or just before this one begins to wait.
     told, telling = os.pipe()
-
-    def tell(number: int, frame: FrameType | None) -> None:
-        os.write(telling, b".")
-
+    os.set_blocking(telling, False)
+    signal.set_wakeup_fd(telling, warn_on_full_buffer=False)
     for number in (signal.SIGTERM, signal.SIGINT):
-        signal.signal(number, tell)
+        signal.signal(number, _is_told_by_the_pipe)
     worker.start()
     say_started()
     os.read(told, 1)
     hurry = threading.Event()
     threading.Thread(target=_hurry_when_told, args=(told, hurry), daemon=True).start()
     return worker.stop(hurry=hurry)
+
+
+def _is_told_by_the_pipe(number: int, frame: FrameType | None) -> None:
+    """Keep a signal from ending the process."""
 
 
 def _hurry_when_told(told: int, hurry: threading.Event) -> None:

@@ -5,7 +5,6 @@ import time
 from contextlib import ExitStack
 from pathlib import Path
 
-import pytest
 from sqlalchemy import func, select
 
 from service.orders.asked import NamedDocument
@@ -15,9 +14,7 @@ from service.parts import Parts
 from service.store.tables import Order, Run
 from tests.faults.fleet import Fleet, wait_for
 from tests.faults.ordering import look, tune_called
-from tests.faults.server import own_server
 from tests.faults.test_workers import shop_on
-from tests.service.conftest import new_database
 from tests.service.shop import WEB_SHOP, archive_of, keeper_of
 
 PAIRS = 60
@@ -42,14 +39,12 @@ def order_count(parts: Parts) -> int:
         return session.scalars(select(func.count()).select_from(Order)).one()
 
 
-@pytest.mark.parametrize("database", ["sqlite", "postgresql"])
 def test_each_pair_is_one_order_though_workers_are_killed_while_they_open_the_run(
-    tmp_path: Path, database: str
+    tmp_path: Path, database_url: str | None
 ) -> None:
     chance = random.Random(22)
     with ExitStack() as until_end:
-        url = None if database == "sqlite" else new_database(until_end.enter_context(own_server()).url)
-        parts, environment = until_end.enter_context(shop_on(tmp_path, url))
+        parts, environment = until_end.enter_context(shop_on(tmp_path, database_url))
         run_id = run_of(parts, chance)
         fleet = Fleet(environment, tmp_path / "log", workers=2)
         mid_run = 0

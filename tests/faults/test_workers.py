@@ -1,6 +1,6 @@
 """Workers that are killed, frozen, and robbed of their database: every order ends right, exactly once.
 
-A short version of `tests/faults/long.py`: fewer kills, the same chances.
+Workers alone; the whole service is tried in `test_whole.py`.
 """
 
 import os
@@ -17,7 +17,7 @@ from tests.faults.fleet import Fleet, Stream, hold_database, wait_for, wait_unti
 from tests.faults.judging import assert_all_planned_once
 from tests.faults.ordering import PlansHere, assert_planned_once, look, place, states, tune_called
 from tests.faults.server import own_server
-from tests.service.conftest import environment_of, new_database, parts_of
+from tests.service.conftest import environment_of, new_database, parts_of, sqlite_alone
 from tests.service.shop import open_shop
 
 # Short leases, so that what was lost is taken up within the patience of a test.
@@ -32,18 +32,19 @@ ORDERS = 12
 
 
 @contextmanager
-def shop_on(
-    folder: Path, database_url: str | None = None, **variables: str
-) -> Iterator[tuple[Parts, Mapping[str, str]]]:
+def shop_on(folder: Path, database_url: str | None, **variables: str) -> Iterator[tuple[Parts, Mapping[str, str]]]:
     parts = parts_of(folder, database_url)
     open_shop(parts)
     yield parts, {**environment_of(folder, database_url), **HASTE, **variables}
     parts.store.close()
 
 
-def test_every_order_is_planned_once_though_workers_are_killed_and_the_database_is_locked(tmp_path: Path) -> None:
+@sqlite_alone("its lock")
+def test_every_order_is_planned_once_though_workers_are_killed_and_the_database_is_locked(
+    tmp_path: Path, database_url: str | None
+) -> None:
     chance = random.Random(20)
-    with shop_on(tmp_path) as (parts, environment):
+    with shop_on(tmp_path, database_url) as (parts, environment):
         fleet = Fleet(environment, tmp_path / "log", workers=2)
         stream = Stream(parts, orders=ORDERS, every_s=0.2, chance=chance)
 
@@ -80,8 +81,10 @@ def test_every_order_is_planned_once_though_the_database_is_cut_off(tmp_path: Pa
         assert_all_planned_once(parts, stream.tunes, tmp_path)
 
 
-def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_planned(tmp_path: Path) -> None:
-    with shop_on(tmp_path, DISCWRIGHT_ATTEMPTS="2") as (parts, environment):
+def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_planned(
+    tmp_path: Path, database_url: str | None
+) -> None:
+    with shop_on(tmp_path, database_url, DISCWRIGHT_ATTEMPTS="2") as (parts, environment):
         deadly = place(parts, tune_called("do:kill-worker;"))
         tunes = {place(parts, tune): tune for tune in map(tune_called, ("Harvest", "Sowing"))}
         queue = Queue(parts.settings.queue_url)
@@ -102,9 +105,11 @@ def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_pl
         assert_all_planned_once(parts, tunes, tmp_path)
 
 
-def test_what_a_worker_planned_that_slept_past_its_lease_is_thrown_away(tmp_path: Path) -> None:
+def test_what_a_worker_planned_that_slept_past_its_lease_is_thrown_away(
+    tmp_path: Path, database_url: str | None
+) -> None:
     tune = tune_called("do:sleep 1.5;")
-    with shop_on(tmp_path) as (parts, environment):
+    with shop_on(tmp_path, database_url) as (parts, environment):
         order_id = place(parts, tune)
         queue = Queue(parts.settings.queue_url)
         queue.send(order_id)

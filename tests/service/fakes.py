@@ -1,12 +1,8 @@
 """A planner that computes nothing, and a client that speaks to the service as its users do."""
 
-import atexit
 import json
-import shutil
-import tempfile
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
-from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -16,10 +12,10 @@ from werkzeug.test import TestResponse
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.errors import MidiReadError
-from service.app import create_app
+from service.app import OPENED, create_app
 from service.limits import Limits
-from service.parts import open_parts
-from service.settings import AccessSettings, PlaceSettings, ServiceSettings
+from service.settings import AccessSettings, ServiceSettings, settings_from
+from tests.service.conftest import begin_data, environment_of
 
 MANY = (1_000_000, 60)  # requests in so many seconds: more than any test makes
 TUNE = b"MThd a tune"
@@ -259,28 +255,24 @@ class Client:
     def post_parts(self, parts: Mapping[str, Any], query: str = "movement=fernhollow-31") -> TestResponse:
         return self.http.post(f"/v1/layouts?{query}", data=dict(parts), content_type="multipart/form-data")
 
+    def close(self) -> None:
+        """Let go of what the service opened."""
+        for opened in self.http.application.extensions[OPENED]:
+            opened.close()
+
 
 def _spelt(headers: dict[str, str]) -> dict[str, str]:
     return {name.replace("_", "-"): value for name, value in headers.items()}
 
 
-def client_of(planner: Any, folder: Path, limits: Limits | None = None) -> Client:
+def client_of(folder: Path, database_url: str | None, planner: Any, limits: Limits | None = None) -> Client:
     """A client of a service of its own on loopback, its data and layouts kept in a folder."""
     data = folder / "data"
-    if not data.exists():
-        shutil.copytree(_new_data(), data)
+    begin_data(data)
+    places = settings_from(environment_of(folder, database_url)).places
     settings = ServiceSettings(
-        places=PlaceSettings(data_directory=data, cache_directory=folder / "layouts"),
+        places=places,
         access=AccessSettings(listens_on_loopback=True, write_rate=MANY, read_rate=MANY),
         limits=limits or Limits(),
     )
     return Client(create_app(settings, planner=planner).test_client())
-
-
-@cache
-def _new_data() -> Path:
-    """A folder of data as the first start makes it; made once, for it takes four times as long as a copy."""
-    folder = Path(tempfile.mkdtemp(prefix="discwright-new-data-"))
-    atexit.register(shutil.rmtree, folder, ignore_errors=True)
-    open_parts(ServiceSettings(places=PlaceSettings(data_directory=folder))).store.close()
-    return folder

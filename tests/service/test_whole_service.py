@@ -130,7 +130,7 @@ def is_alive(pid: int) -> bool:
 
 
 @contextmanager
-def running(folder: Path, *arguments: str, **more: str) -> Iterator[Running]:
+def running(folder: Path, database_url: str | None, *arguments: str, **more: str) -> Iterator[Running]:
     with socket.socket() as probe:
         probe.bind(("127.0.0.1", 0))
         port = probe.getsockname()[1]
@@ -138,6 +138,7 @@ def running(folder: Path, *arguments: str, **more: str) -> Iterator[Running]:
         **{name: value for name, value in os.environ.items() if not name.startswith(("DISCWRIGHT", "DATABASE_URL"))},
         "DISCWRIGHT_DATA": str(folder / "data"),
         "DISCWRIGHT_CACHE": str(folder / "layouts"),
+        **({} if database_url is None else {"DATABASE_URL": database_url}),
         **more,
     }
     command = [*COMMAND, "serve", "--port", str(port), "--slots", "1", *arguments]
@@ -156,18 +157,21 @@ def running(folder: Path, *arguments: str, **more: str) -> Iterator[Running]:
 
 
 @pytest.fixture(scope="module")
-def service(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Running]:
-    with running(tmp_path_factory.mktemp("whole"), DISCWRIGHT_LOG_LEVEL="debug") as started:
+def service(tmp_path_factory: pytest.TempPathFactory, module_database_url: str | None) -> Iterator[Running]:
+    folder = tmp_path_factory.mktemp("whole")
+    with running(folder, module_database_url, DISCWRIGHT_LOG_LEVEL="debug") as started:
         yield started
 
 
-def test_the_first_start_makes_a_key_that_works_and_no_later_start_makes_another(tmp_path: Path) -> None:
-    with running(tmp_path) as first:
+def test_the_first_start_makes_a_key_that_works_and_no_later_start_makes_another(
+    tmp_path: Path, database_url: str | None
+) -> None:
+    with running(tmp_path, database_url) as first:
         assert first.ask("GET", "/v1/keys/me").status == 200
         assert first.ask("GET", f"/sign-in/{first.link}").status in (200, 303)
     said = (tmp_path / "said").read_text()
 
-    with running(tmp_path) as second:
+    with running(tmp_path, database_url) as second:
         assert second.ask("GET", "/v1/keys/me").status == 200
 
     assert (tmp_path / "said").read_text() == said  # the second start said nothing there
@@ -254,8 +258,8 @@ def test_no_secret_is_in_the_log_of_all_that_uses_secrets(service: Running) -> N
     assert '"route": "/v1/proofs/<text>"' in log  # the requests themselves are there
 
 
-def test_what_is_killed_is_started_again_and_no_connection_is_refused(tmp_path: Path) -> None:
-    with running(tmp_path) as service:
+def test_what_is_killed_is_started_again_and_no_connection_is_refused(tmp_path: Path, database_url: str | None) -> None:
+    with running(tmp_path, database_url) as service:
         web, worker = service.part("gunicorn"), None
         wait_for(lambda: bool(service.part("work")))
         worker = service.part("work")
@@ -286,8 +290,10 @@ def test_what_is_killed_is_started_again_and_no_connection_is_refused(tmp_path: 
         assert "the web ended by SIGKILL; it is started again in 0.5 s" in service.log()
 
 
-def test_sigterm_answers_what_is_asked_finishes_what_is_planned_and_leaves_no_process(tmp_path: Path) -> None:
-    with running(tmp_path) as service:
+def test_sigterm_answers_what_is_asked_finishes_what_is_planned_and_leaves_no_process(
+    tmp_path: Path, database_url: str | None
+) -> None:
+    with running(tmp_path, database_url) as service:
         order_id = service.order()
         service.planned(order_id)
         seen = service.ask("GET", f"/v1/orders/{order_id}")
@@ -314,8 +320,8 @@ def test_sigterm_answers_what_is_asked_finishes_what_is_planned_and_leaves_no_pr
         assert [pid for pid in processes if is_alive(pid)] == []
 
 
-def test_a_supervisor_that_is_killed_takes_all_with_it(tmp_path: Path) -> None:
-    with running(tmp_path) as service:
+def test_a_supervisor_that_is_killed_takes_all_with_it(tmp_path: Path, database_url: str | None) -> None:
+    with running(tmp_path, database_url) as service:
         wait_for(lambda: bool(service.part("work")))
         processes = all_below(service.process.pid)
 

@@ -9,7 +9,7 @@ import pytest
 from flask import Flask
 
 from service.api.api_document import Route, path_of, routes_of
-from service.app import create_app
+from service.app import OPENED, create_app
 from service.parts import Parts
 from service.settings import AccessSettings
 from tests.service.api.described import World, assert_described
@@ -23,10 +23,12 @@ def app_of(parts: Parts) -> Flask:
 
 
 @pytest.fixture(scope="module")
-def world(tmp_path_factory: pytest.TempPathFactory) -> Iterator[World]:
-    parts = parts_of(tmp_path_factory.mktemp("examples"))
-    yield World(app=app_of(parts), parts=parts)
-    parts.store.close()
+def world(tmp_path_factory: pytest.TempPathFactory, module_database_url: str | None) -> Iterator[World]:
+    parts = parts_of(tmp_path_factory.mktemp("examples"), module_database_url)
+    app = app_of(parts)
+    yield World(app=app, parts=parts)
+    for opened in (*app.extensions[OPENED], parts.store):
+        opened.close()
 
 
 @pytest.fixture(scope="module")

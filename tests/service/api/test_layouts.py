@@ -1,11 +1,11 @@
 import json
 from io import BytesIO
-from pathlib import Path
 
 import pytest
 
 from layout.documents import shipped_movement
-from tests.service.fakes import LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner, client_of
+from tests.service.api.conftest import ClientFor
+from tests.service.fakes import LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner
 
 TUNE_MEDIA_TYPES = ["audio/midi", "audio/x-midi", "audio/mid", "application/x-midi", "application/octet-stream"]
 
@@ -133,8 +133,8 @@ def test_the_same_tune_again_is_not_laid_out_again(client: Client, planner: Fake
     assert second.data == first.data
 
 
-def test_a_layout_made_by_one_worker_is_found_by_the_other(tmp_path: Path) -> None:
-    one, other = client_of(FakePlanner(), tmp_path), client_of(FakePlanner(), tmp_path)
+def test_a_layout_made_by_one_worker_is_found_by_the_other(client_for: ClientFor) -> None:
+    one, other = client_for(FakePlanner()), client_for(FakePlanner())
     links = one.post_tune().json["links"]
 
     answers = [other.get(path).status_code for path in links.values()]
@@ -177,8 +177,8 @@ def test_a_reason_gives_cutting_files_that_say_what_they_are(faulty_client: Clie
     assert 'filename="NOT-GOOD-TO-CUT_harvest-dance_' in given.headers["Content-Disposition"]
 
 
-def test_a_reason_given_by_another_worker_s_layout_marks_the_file_too(tmp_path: Path) -> None:
-    one, other = (client_of(FakePlanner(findings=(THIN_WEB,)), tmp_path) for _ in range(2))
+def test_a_reason_given_by_another_worker_s_layout_marks_the_file_too(client_for: ClientFor) -> None:
+    one, other = (client_for(FakePlanner(findings=(THIN_WEB,))) for _ in range(2))
     path = one.post_tune().headers["Location"]
 
     given = other.get(f"{path}/disc.dxf?despite_findings=trial")

@@ -2,6 +2,7 @@
 
 import json
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -10,11 +11,10 @@ from werkzeug.test import TestResponse
 
 from layout.documents import shipped_text
 from service.access.scopes import Scope
-from service.app import create_app
+from service.app import OPENED, create_app
 from service.parts import Parts
-from service.settings import AccessSettings, PlaceSettings, ServiceSettings
+from service.settings import AccessSettings, ServiceSettings
 from tests.service.api.guarded import bearing, new_key, problem_of
-from tests.service.conftest import parts_of
 from tests.service.fakes import MANY, FakePlanner
 from tests.service.fakes import TUNE as ANY_TUNE
 
@@ -25,7 +25,7 @@ class Bench:
     def __init__(self, parts: Parts, folder: Path) -> None:
         self.planner = FakePlanner()
         settings = ServiceSettings(
-            places=PlaceSettings(data_directory=parts.settings.places.data_directory, cache_directory=folder / "kept"),
+            places=replace(parts.settings.places, cache_directory=folder / "kept"),
             access=AccessSettings(listens_on_loopback=True, read_rate=MANY, write_rate=MANY),
         )
         self.http: FlaskClient = create_app(settings, planner=self.planner).test_client()
@@ -42,10 +42,11 @@ class Bench:
 
 
 @pytest.fixture
-def bench(tmp_path: Path) -> Iterator[Bench]:
-    parts = parts_of(tmp_path)
-    yield Bench(parts, tmp_path)
-    parts.store.close()
+def bench(parts: Parts, tmp_path: Path) -> Iterator[Bench]:
+    opened = Bench(parts, tmp_path)
+    yield opened
+    for one in opened.http.application.extensions[OPENED]:
+        one.close()
 
 
 def test_a_layout_is_for_the_movement_and_the_cutter_that_an_owner_keeps(bench: Bench) -> None:

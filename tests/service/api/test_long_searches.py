@@ -2,13 +2,13 @@
 
 import json
 from io import BytesIO
-from pathlib import Path
 
 import pytest
 
 from layout import walk
 from service.limits import Limits
-from tests.service.fakes import TUNE, Client, FakePlanner, client_of
+from tests.service.api.conftest import ClientFor
+from tests.service.fakes import TUNE, Client, FakePlanner
 from tests.service.hard_tune import hard_tune
 
 MOST_S = Limits().search_s
@@ -23,10 +23,10 @@ def posted(client: Client, **settings: float) -> str:
 
 @pytest.mark.parametrize("settings", [{}, {"time_limit_s": MOST_S + 1}], ids=["no limit", "a longer one"])
 def test_a_layout_that_the_service_stopped_is_answered_and_made_anew_the_next_time(
-    settings: dict[str, float], tmp_path: Path
+    settings: dict[str, float], client_for: ClientFor
 ) -> None:
     planner = FakePlanner(needs_s=MOST_S + 2)
-    client = client_of(planner, tmp_path)
+    client = client_for(planner)
 
     first, second = posted(client, **settings), posted(client, **settings)
 
@@ -35,9 +35,9 @@ def test_a_layout_that_the_service_stopped_is_answered_and_made_anew_the_next_ti
     assert client.get(f"/v1/layouts/{first}").status_code == 404
 
 
-def test_a_layout_that_its_own_settings_stopped_is_kept(tmp_path: Path) -> None:
+def test_a_layout_that_its_own_settings_stopped_is_kept(client_for: ClientFor) -> None:
     planner = FakePlanner(needs_s=MOST_S + 2)
-    client = client_of(planner, tmp_path)
+    client = client_for(planner)
 
     first, _ = posted(client, time_limit_s=MOST_S), posted(client, time_limit_s=MOST_S)
 
@@ -45,9 +45,9 @@ def test_a_layout_that_its_own_settings_stopped_is_kept(tmp_path: Path) -> None:
     assert client.get(f"/v1/layouts/{first}").status_code == 200
 
 
-def test_a_search_that_ends_by_itself_is_kept(tmp_path: Path) -> None:
+def test_a_search_that_ends_by_itself_is_kept(client_for: ClientFor) -> None:
     planner = FakePlanner(needs_s=MOST_S)
-    client = client_of(planner, tmp_path)
+    client = client_for(planner)
 
     posted(client)
     posted(client)
@@ -55,14 +55,14 @@ def test_a_search_that_ends_by_itself_is_kept(tmp_path: Path) -> None:
     assert planner.laid_out_count == 1
 
 
-def test_the_limit_is_told_with_the_others(tmp_path: Path) -> None:
-    limits = client_of(FakePlanner(), tmp_path).get("/v1/limits")
+def test_the_limit_is_told_with_the_others(client_for: ClientFor) -> None:
+    limits = client_for(FakePlanner()).get("/v1/limits")
 
     assert [one["value"] for one in json.loads(limits.data)["limits"] if one["name"] == "search_s"] == [MOST_S]
 
 
-def test_a_hard_tune_is_answered_with_the_best_found_by_then(tmp_path: Path) -> None:
-    client = client_of(walk, tmp_path, Limits(search_s=1))
+def test_a_hard_tune_is_answered_with_the_best_found_by_then(client_for: ClientFor) -> None:
+    client = client_for(walk, Limits(search_s=1))
     settings = json.dumps({"octave_moves": "all", "transpose": {"range": 48}})
 
     answer = client.post_parts(

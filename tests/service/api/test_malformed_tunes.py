@@ -1,6 +1,6 @@
 """Files that cannot be read, sent to the service with the real computation behind it."""
 
-from pathlib import Path
+from collections.abc import Iterator
 
 import pytest
 
@@ -10,9 +10,10 @@ from tests.service.fakes import Client, client_of
 
 
 @pytest.fixture(scope="module")
-def real_client(tmp_path_factory: pytest.TempPathFactory) -> Client:
-    folder: Path = tmp_path_factory.mktemp("service")
-    return client_of(walk, folder)
+def real_client(tmp_path_factory: pytest.TempPathFactory, module_database_url: str | None) -> Iterator[Client]:
+    client = client_of(tmp_path_factory.mktemp("service"), module_database_url, walk)
+    yield client
+    client.close()
 
 
 def test_there_are_malformed_files_enough() -> None:

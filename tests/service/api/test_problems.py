@@ -13,7 +13,8 @@ from layout.errors import Problem as Fault
 from layout.errors import RulingError
 from service.api.problems import PROBLEMS
 from service.limits import Limits
-from tests.service.fakes import BROKEN_TUNE, TUNE, Client, FakePlanner, client_of
+from tests.service.api.conftest import ClientFor
+from tests.service.fakes import BROKEN_TUNE, TUNE, Client, FakePlanner
 
 PART = b'--xx\r\nContent-Disposition: form-data; name="%s"\r\n\r\n%s\r\n'
 FORM = "multipart/form-data; boundary=xx"
@@ -102,9 +103,9 @@ def test_a_document_with_many_faults_is_told_in_short(client: Client) -> None:
     assert len(answer.data) < 20 * 1200
 
 
-def test_rulings_that_contradict_each_other(tmp_path: Path) -> None:
+def test_rulings_that_contradict_each_other(client_for: ClientFor) -> None:
     refuse(
-        client_of(ContradictedPlanner(), tmp_path).post_tune(),
+        client_for(ContradictedPlanner()).post_tune(),
         "rulings-contradict",
         "settings: /rulings/1: note 4 is placed and left out",
         invalid_params=[{"pointer": "/rulings/1", "detail": "note 4 is placed and left out"}],
@@ -212,8 +213,8 @@ def test_a_multipart_body_over_the_limit(client: Client) -> None:
     refuse(answer, "upload-too-large", "the request body is larger than 2097152 bytes")
 
 
-def test_a_document_over_its_limit(tmp_path: Path) -> None:
-    client = client_of(FakePlanner(), tmp_path, Limits(document_bytes=100))
+def test_a_document_over_its_limit(client_for: ClientFor) -> None:
+    client = client_for(FakePlanner(), Limits(document_bytes=100))
 
     answer = client.post_parts({"tune": (BytesIO(TUNE), "a.mid"), "settings": " " * 101})
 
@@ -300,8 +301,8 @@ def test_a_multipart_body_that_cannot_be_taken_apart(client: Client, body: bytes
     refuse(client.post_tune(body, media_type=media_type), "multipart-unreadable", detail)
 
 
-def test_a_multipart_body_of_too_many_parts(tmp_path: Path) -> None:
-    client = client_of(FakePlanner(), tmp_path, Limits(form_parts=1))
+def test_a_multipart_body_of_too_many_parts(client_for: ClientFor) -> None:
+    client = client_for(FakePlanner(), Limits(form_parts=1))
     body = PART % (b"tune", TUNE) + PART % (b"settings", b"{}") + b"--xx--\r\n"
 
     refuse(client.post_tune(body, media_type=FORM), "multipart-unreadable", "it has too many parts")
@@ -319,8 +320,8 @@ def test_a_body_that_ends_too_soon(client: Client) -> None:
     refuse(answer, "request-malformed", "the body ended after 11 bytes, but Content-Length says 21; send it again")
 
 
-def test_a_fault_of_the_service_is_logged_and_not_told(tmp_path: Path, caplog: pytest.LogCaptureFixture) -> None:
-    answer = client_of(FailingPlanner(), tmp_path).post_tune()
+def test_a_fault_of_the_service_is_logged_and_not_told(client_for: ClientFor, caplog: pytest.LogCaptureFixture) -> None:
+    answer = client_for(FailingPlanner()).post_tune()
 
     refuse(answer, "internal-error", "the service failed; its log holds the trace")
     assert b"secret" not in answer.data

@@ -86,13 +86,6 @@ def shop(any_parts: Parts) -> Iterator[Shop]:
     opened.close()
 
 
-@pytest.fixture
-def small_shop(parts: Parts) -> Iterator[Shop]:
-    opened = Shop(parts)
-    yield opened
-    opened.close()
-
-
 def test_a_run_sent_again_gets_its_answer_though_its_movement_was_withdrawn_since(shop: Shop) -> None:
     own = {**shop.get("/v1/movements/tarnlight-17"), "id": "own-17"}
     address = "/v1/movements/own-17"
@@ -190,34 +183,32 @@ def test_runs_of_test_keys_are_apart_and_so_are_their_orders(shop: Shop) -> None
     ],
 )
 def test_what_cannot_be_ordered_at_all_is_refused_at_once(
-    small_shop: Shop, run: dict[str, Any], pointer: str, says: str
+    shop: Shop, run: dict[str, Any], pointer: str, says: str
 ) -> None:
-    told = problem_of(small_shop.ask(archive_of(a=TUNE), run), "document-invalid")
+    told = problem_of(shop.ask(archive_of(a=TUNE), run), "document-invalid")
 
     [fault] = told["invalid_params"]
     assert fault["pointer"] == pointer
     assert says in fault["detail"]
-    assert small_shop.run_count() == 0
+    assert shop.run_count() == 0
 
 
-def test_more_orders_than_a_run_may_have_are_refused(small_shop: Shop) -> None:
+def test_more_orders_than_a_run_may_have_are_refused(shop: Shop) -> None:
     archive = archive_of(**{f"t{number}": b"" for number in range(5001)})
 
-    told = problem_of(small_shop.ask(archive, {"movements": ["fernhollow-31", "tarnlight-17"]}), "document-invalid")
+    told = problem_of(shop.ask(archive, {"movements": ["fernhollow-31", "tarnlight-17"]}), "document-invalid")
 
     assert "that makes 10002 orders; a run has at most 10000" in told["detail"]
 
 
-def test_release_alone_needs_the_scope(small_shop: Shop) -> None:
-    problem_of(small_shop.ask(archive_of(a=TUNE), {**FERN, "release_alone": True}), "scope-missing")
+def test_release_alone_needs_the_scope(shop: Shop) -> None:
+    problem_of(shop.ask(archive_of(a=TUNE), {**FERN, "release_alone": True}), "scope-missing")
 
 
-def test_a_form_without_its_parts_is_told_which(small_shop: Shop) -> None:
-    told = problem_of(
-        small_shop.http.post("/v1/runs", data={"run": "{}"}, headers=small_shop.web), "media-type-unsupported"
-    )
+def test_a_form_without_its_parts_is_told_which(shop: Shop) -> None:
+    told = problem_of(shop.http.post("/v1/runs", data={"run": "{}"}, headers=shop.web), "media-type-unsupported")
     assert "archive and run" in told["detail"]
-    told = problem_of(small_shop.ask(b""), "parameter-missing")
+    told = problem_of(shop.ask(b""), "parameter-missing")
     assert "the part archive is missing or empty" in told["detail"]
 
 
@@ -290,22 +281,22 @@ HOSTILE: dict[str, tuple[Callable[[], bytes], str]] = {
 
 
 @pytest.mark.parametrize("kind", HOSTILE)
-def test_a_hostile_archive_is_refused_and_why_is_told(small_shop: Shop, kind: str) -> None:
+def test_a_hostile_archive_is_refused_and_why_is_told(shop: Shop, kind: str) -> None:
     make, says = HOSTILE[kind]
 
-    told = problem_of(small_shop.ask(make()), "archive-unreadable")
+    told = problem_of(shop.ask(make()), "archive-unreadable")
 
     assert says in told["detail"]
     assert len(told["detail"]) < 400
-    assert small_shop.run_count() == 0
+    assert shop.run_count() == 0
 
 
-def test_hostile_archives_are_refused_soon_and_in_little_memory(small_shop: Shop, tmp_path: Path) -> None:
+def test_hostile_archives_are_refused_soon_and_in_little_memory(shop: Shop, tmp_path: Path) -> None:
     bodies = [tmp_path / f"body {number}" for number in range(len(HOSTILE))]
     for (make, _), body in zip(HOSTILE.values(), bodies, strict=True):
         body.write_bytes(form_of(make(), FERN))
 
-    answers = answered(small_shop, tmp_path, "POST", *bodies)
+    answers = answered(shop, tmp_path, "POST", *bodies)
 
     for kind, body, answer in zip(HOSTILE, bodies, answers, strict=True):
         assert answer.status == 422, kind
@@ -314,28 +305,28 @@ def test_hostile_archives_are_refused_soon_and_in_little_memory(small_shop: Shop
         assert answer.seconds < 5, kind
 
 
-def test_tunes_that_cannot_be_used_are_refused_and_the_others_ordered(small_shop: Shop) -> None:
+def test_tunes_that_cannot_be_used_are_refused_and_the_others_ordered(shop: Shop) -> None:
     lying = bytearray(archive_of(a=TUNE, bomb=bytes(40 * MIB), lying=bytes(3 * MIB), none=b"no tune", z=TUNE))
     at = lying.rindex(b"lying.mid") - 46 + 24  # the size it is said to unpack to (APPNOTE 4.3.12)
     lying[at : at + 4] = (10).to_bytes(4, "little")
 
-    run_id = small_shop.opened(bytes(lying))
+    run_id = shop.opened(bytes(lying))
 
-    items = {item["tune"]: item for item in small_shop.items(run_id)}
+    items = {item["tune"]: item for item in shop.items(run_id)}
     assert [tune for tune, item in items.items() if item["state"] == "received"] == ["a.mid", "z.mid"]
     assert items["bomb.mid"]["reason"] == "'bomb.mid' is larger than 2097152 bytes"
     assert "'lying.mid' cannot be unpacked" in items["lying.mid"]["reason"]
     assert "MIDI" in items["none.mid"]["reason"]
 
 
-def test_names_that_lead_elsewhere_are_labels_and_lead_nowhere(small_shop: Shop, tmp_path: Path) -> None:
+def test_names_that_lead_elsewhere_are_labels_and_lead_nowhere(shop: Shop, tmp_path: Path) -> None:
     before = sorted(path for path in tmp_path.rglob("*") if path.suffix == ".mid")
     names = ["../../../up", "/abs", "C:\\windows\\c", "a/../../b", "=1+1"]
-    run_id = small_shop.opened(archive_of(**dict.fromkeys(names, TUNE)))
-    for item in small_shop.items(run_id):
-        planned(small_shop.parts, item["order"])
+    run_id = shop.opened(archive_of(**dict.fromkeys(names, TUNE)))
+    for item in shop.items(run_id):
+        planned(shop.parts, item["order"])
 
-    with small_shop.results(run_id) as archive:
+    with shop.results(run_id) as archive:
         folders = {name.partition("/")[0] for name in archive.namelist() if "/" in name}
     assert folders == {
         *("00001_up_fernhollow-31", "00002_abs_fernhollow-31", "00003_c-windows-c_fernhollow-31"),
@@ -344,23 +335,23 @@ def test_names_that_lead_elsewhere_are_labels_and_lead_nowhere(small_shop: Shop,
     assert sorted(path for path in tmp_path.rglob("*") if path.suffix == ".mid") == before
 
 
-def test_a_form_that_is_too_large_is_refused_by_its_length_alone(small_shop: Shop) -> None:
+def test_a_form_that_is_too_large_is_refused_by_its_length_alone(shop: Shop) -> None:
     said = {"CONTENT_LENGTH": f"{64 * MIB + 1}"}  # and nothing sent
 
-    answer = small_shop.http.post("/v1/runs", content_type=FORM, headers=small_shop.web, environ_overrides=said)
+    answer = shop.http.post("/v1/runs", content_type=FORM, headers=shop.web, environ_overrides=said)
 
     assert problem_of(answer, "upload-too-large")["limit_bytes"] == 64 * MIB
 
 
-def test_a_form_without_a_length_is_read_no_further_than_its_limit(small_shop: Shop, tmp_path: Path) -> None:
+def test_a_form_without_a_length_is_read_no_further_than_its_limit(shop: Shop, tmp_path: Path) -> None:
     body = tmp_path / "body"
     with body.open("wb") as file:
         file.write(form_of(b"x", FERN)[:90])
         file.truncate(300 * MIB)
 
-    chunked = {**small_shop.web, "Transfer-Encoding": "chunked", "Content-Type": FORM}
+    chunked = {**shop.web, "Transfer-Encoding": "chunked", "Content-Type": FORM}
     with body.open("rb") as stream:
-        answer = small_shop.http.post(
+        answer = shop.http.post(
             "/v1/runs", headers=chunked, input_stream=stream, environ_overrides={"wsgi.input_terminated": True}
         )
         read_bytes = stream.tell()
@@ -369,19 +360,19 @@ def test_a_form_without_a_length_is_read_no_further_than_its_limit(small_shop: S
     assert read_bytes <= 64 * MIB + 16 * MIB + 300_000  # the limit, and what is read on so that the answer is seen
 
 
-def test_a_list_that_is_too_large_is_refused(small_shop: Shop) -> None:
+def test_a_list_that_is_too_large_is_refused(shop: Shop) -> None:
     run = {**FERN, "reference": "x" * (4 * MIB)}
 
-    assert problem_of(small_shop.ask(archive_of(a=TUNE), run), "upload-too-large")["limit_bytes"] == 4 * MIB
+    assert problem_of(shop.ask(archive_of(a=TUNE), run), "upload-too-large")["limit_bytes"] == 4 * MIB
 
 
 @pytest.mark.parametrize(("name", "problem"), [("part%d", "parameter-invalid"), ("archive", "parameter-invalid")])
-def test_a_form_of_ten_thousand_small_parts_is_refused_at_once(small_shop: Shop, name: str, problem: str) -> None:
+def test_a_form_of_ten_thousand_small_parts_is_refused_at_once(shop: Shop, name: str, problem: str) -> None:
     one = '--discs\r\nContent-Disposition: form-data; name="{}"; filename="a"\r\n\r\nx\r\n'
     body = "".join(one.format(name % number if "%" in name else name) for number in range(10_000)) + "--discs--\r\n"
     begun_s = time.monotonic()
 
-    problem_of(small_shop.http.post("/v1/runs", data=body.encode(), content_type=FORM, headers=small_shop.web), problem)
+    problem_of(shop.http.post("/v1/runs", data=body.encode(), content_type=FORM, headers=shop.web), problem)
 
     assert time.monotonic() - begun_s < 1.0
 
@@ -416,47 +407,47 @@ def test_results_hold_cutting_files_of_released_orders_alone(shop: Shop) -> None
     assert [item["order"] for item in told["items"]] == order_ids
 
 
-def test_the_drawing_for_cutting_is_in_the_results_byte_for_byte(small_shop: Shop) -> None:
-    run_id = small_shop.opened(archive_of(a=TUNE))
-    [order_id] = [item["order"] for item in small_shop.items(run_id)]
-    planned(small_shop.parts, order_id)
-    small_shop.decide(order_id, "release", small_shop.shop, by="A. Maker")
-    [file] = [file for file in small_shop.seen(order_id)["plan"]["files"] if file["name"] == "disc.dxf"]
+def test_the_drawing_for_cutting_is_in_the_results_byte_for_byte(shop: Shop) -> None:
+    run_id = shop.opened(archive_of(a=TUNE))
+    [order_id] = [item["order"] for item in shop.items(run_id)]
+    planned(shop.parts, order_id)
+    shop.decide(order_id, "release", shop.shop, by="A. Maker")
+    [file] = [file for file in shop.seen(order_id)["plan"]["files"] if file["name"] == "disc.dxf"]
 
-    with small_shop.results(run_id) as archive:
+    with shop.results(run_id) as archive:
         packed = archive.read(f"00001_a_fernhollow-31/{file['saved_as']}")
-    assert packed == small_shop.http.get(file["href"], headers=small_shop.web).data
+    assert packed == shop.http.get(file["href"], headers=shop.web).data
 
 
-def test_the_same_state_gives_the_same_archive(small_shop: Shop) -> None:
-    run_id = small_shop.opened(archive_of(a=TUNE, b=TUNE))
-    for item in small_shop.items(run_id):
-        planned(small_shop.parts, item["order"])
+def test_the_same_state_gives_the_same_archive(shop: Shop) -> None:
+    run_id = shop.opened(archive_of(a=TUNE, b=TUNE))
+    for item in shop.items(run_id):
+        planned(shop.parts, item["order"])
     path = f"/v1/runs/{run_id}/results.zip"
 
-    first, second = (small_shop.http.get(path, headers=small_shop.web).data for _ in range(2))
+    first, second = (shop.http.get(path, headers=shop.web).data for _ in range(2))
 
     assert first == second
 
 
-def test_what_was_deleted_is_not_in_the_results(small_shop: Shop) -> None:
-    run_id = small_shop.opened(archive_of(a=TUNE))
-    [order_id] = [item["order"] for item in small_shop.items(run_id)]
-    planned(small_shop.parts, order_id)
-    small_shop.decide(order_id, "cancel", small_shop.web)
-    assert small_shop.http.delete(f"/v1/orders/{order_id}", headers=small_shop.web).status_code == 200
+def test_what_was_deleted_is_not_in_the_results(shop: Shop) -> None:
+    run_id = shop.opened(archive_of(a=TUNE))
+    [order_id] = [item["order"] for item in shop.items(run_id)]
+    planned(shop.parts, order_id)
+    shop.decide(order_id, "cancel", shop.web)
+    assert shop.http.delete(f"/v1/orders/{order_id}", headers=shop.web).status_code == 200
 
-    with small_shop.results(run_id) as archive:
+    with shop.results(run_id) as archive:
         assert archive.namelist() == ["run.json"]
         assert "a.mid" not in archive.read("run.json").decode()
 
 
-def test_results_whose_files_are_lost_never_look_whole(small_shop: Shop) -> None:
-    run_id = small_shop.opened(archive_of(a=TUNE))
-    [item] = small_shop.items(run_id)
-    plan = planned(small_shop.parts, item["order"])
-    small_shop.parts.files.remove(plan.files[-1].digest)
-    answer = small_shop.http.get(f"/v1/runs/{run_id}/results.zip", headers=small_shop.web, buffered=False)
+def test_results_whose_files_are_lost_never_look_whole(shop: Shop) -> None:
+    run_id = shop.opened(archive_of(a=TUNE))
+    [item] = shop.items(run_id)
+    plan = planned(shop.parts, item["order"])
+    shop.parts.files.remove(plan.files[-1].digest)
+    answer = shop.http.get(f"/v1/runs/{run_id}/results.zip", headers=shop.web, buffered=False)
     got = bytearray()
 
     def read_all() -> None:
@@ -469,7 +460,7 @@ def test_results_whose_files_are_lost_never_look_whole(small_shop: Shop) -> None
         zipfile.ZipFile(io.BytesIO(got))
 
 
-def test_a_form_of_the_largest_size_is_in_memory_twice_at_most(small_shop: Shop, tmp_path: Path) -> None:
+def test_a_form_of_the_largest_size_is_in_memory_twice_at_most(shop: Shop, tmp_path: Path) -> None:
     body = tmp_path / "body"
     noise = random.Random(5).randbytes(2 * MIB)
     archive = io.BytesIO()
@@ -478,21 +469,21 @@ def test_a_form_of_the_largest_size_is_in_memory_twice_at_most(small_shop: Shop,
             packed.writestr(f"{number}.mid", noise)
     body.write_bytes(form_of(archive.getvalue(), FERN))
 
-    [answer] = answered(small_shop, tmp_path, "POST", body)
+    [answer] = answered(shop, tmp_path, "POST", body)
 
     assert answer.status == 202
     assert answer.more_mib < 2 * 60 + 20
 
 
-def test_results_are_sent_without_being_held_in_memory(small_shop: Shop, tmp_path: Path) -> None:
-    run_id = small_shop.opened(archive_of(**{f"t{number}": TUNE for number in range(20)}))
-    [large] = keeper_of(small_shop.parts).keep([random.Random(5).randbytes(8 * MIB)])
-    for item in small_shop.items(run_id):
-        planned(small_shop.parts, item["order"])
-    with small_shop.parts.store.writing() as session:
+def test_results_are_sent_without_being_held_in_memory(shop: Shop, tmp_path: Path) -> None:
+    run_id = shop.opened(archive_of(**{f"t{number}": TUNE for number in range(20)}))
+    [large] = keeper_of(shop.parts).keep([random.Random(5).randbytes(8 * MIB)])
+    for item in shop.items(run_id):
+        planned(shop.parts, item["order"])
+    with shop.parts.store.writing() as session:
         session.execute(update(PlanFile).where(PlanFile.name == "disc.svg").values(digest=large, byte_count=8 * MIB))
 
-    [answer] = answered(small_shop, tmp_path, f"GET /{run_id}/results.zip")
+    [answer] = answered(shop, tmp_path, f"GET /{run_id}/results.zip")
 
     assert answer.status == 200
     assert answer.byte_count > 20 * 8 * MIB
@@ -526,7 +517,7 @@ def answered(shop: Shop, folder: Path, what: str, *bodies: Path) -> list[Answere
     shown = bearing(new_key(shop.parts, *Scope, owner="Bellgrove"))["Authorization"]
     done = subprocess.run(
         [sys.executable, "-m", "tests.service.api.peak_memory", method, f"/v1/runs{path}", shown, FORM, *bodies],
-        env={**os.environ, **environment_of(folder)},
+        env={**os.environ, **environment_of(folder, shop.parts.settings.places.database_url)},
         cwd=Path(__file__).parents[3],
         stdout=subprocess.PIPE,
         text=True,

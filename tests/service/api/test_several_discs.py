@@ -6,7 +6,8 @@ from pathlib import Path
 import pytest
 from werkzeug.test import TestResponse
 
-from tests.service.fakes import LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner, client_of
+from tests.service.api.conftest import ClientFor
+from tests.service.fakes import LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner
 
 
 def post(client: Client, discs: int = 3, query: str = "", **headers: str) -> TestResponse:
@@ -24,9 +25,9 @@ def unpacked(answer: TestResponse) -> dict[str, bytes]:
 
 
 @pytest.fixture
-def half_faulty(tmp_path: Path) -> Client:
+def half_faulty(client_for: ClientFor) -> Client:
     """A client of a service whose second disc of every set has a web too thin to cut."""
-    return client_of(FakePlanner(findings=(THIN_WEB,), faulty_disc=2), tmp_path)
+    return client_for(FakePlanner(findings=(THIN_WEB,), faulty_disc=2))
 
 
 def test_several_discs_are_several_layouts_each_with_its_own_links(client: Client) -> None:
@@ -157,8 +158,8 @@ def test_a_reason_gives_the_archive_with_the_faulty_disc_marked(half_faulty: Cli
     assert 'filename="NOT-GOOD-TO-CUT_harvest-dance_3-discs_' in answer.headers["Content-Disposition"]
 
 
-def test_a_reason_marks_the_disc_it_is_given_for_whatever_worker_answers(tmp_path: Path) -> None:
-    one, other = (client_of(FakePlanner(findings=(THIN_WEB,)), tmp_path) for _ in range(2))
+def test_a_reason_marks_the_disc_it_is_given_for_whatever_worker_answers(client_for: ClientFor) -> None:
+    one, other = (client_for(FakePlanner(findings=(THIN_WEB,))) for _ in range(2))
     disc = post(one).json["discs"][2]
 
     given = other.get(f"/v1/layouts/{disc['fingerprint']}/hits.csv?despite_findings=trial")

@@ -1,7 +1,6 @@
 import io
 import json
 import zipfile
-from pathlib import Path
 from typing import Any
 
 import ezdxf
@@ -9,7 +8,8 @@ import pytest
 
 from service.limits import Limits
 from tests.layout.sheets.drawn import FINGERPRINT, RIM_MM, disc_dxf, entities_of, record_dxf
-from tests.service.fakes import Client, FakePlanner, client_of
+from tests.service.api.conftest import ClientFor
+from tests.service.fakes import Client, FakePlanner
 
 JOB: dict[str, Any] = {
     "format": "discwright-sheets/1",
@@ -107,8 +107,8 @@ def test_an_answer_that_cannot_be_given_is_refused_with_what_can(client: Client)
     assert answer.json["allowed_types"] == ["application/json", "application/zip"]
 
 
-def test_a_job_larger_than_a_document_may_be_is_refused(planner: FakePlanner, tmp_path: Path) -> None:
-    client = client_of(planner, tmp_path, Limits(document_bytes=100))
+def test_a_job_larger_than_a_document_may_be_is_refused(planner: FakePlanner, client_for: ClientFor) -> None:
+    client = client_for(planner, Limits(document_bytes=100))
 
     answer = post(client, JOB)
 
@@ -234,8 +234,10 @@ def test_a_form_that_is_none_is_a_problem(client: Client) -> None:
     assert answer.json["type"] == "/problems/multipart-unreadable"
 
 
-def test_a_form_may_be_larger_than_other_bodies_up_to_its_own_limit(planner: FakePlanner, tmp_path: Path) -> None:
-    client = client_of(planner, tmp_path, Limits(upload_bytes=1000, sheet_form_bytes=100_000))
+def test_a_form_may_be_larger_than_other_bodies_up_to_its_own_limit(
+    planner: FakePlanner, client_for: ClientFor
+) -> None:
+    client = client_for(planner, Limits(upload_bytes=1000, sheet_form_bytes=100_000))
 
     assert len(DISC) > 1000
     assert post_form(client, [job_part(), ("drawing-dance", DISC)]).status_code == 200

@@ -3,7 +3,6 @@
 import io
 import json
 import zipfile
-from pathlib import Path
 from typing import Any
 
 import pytest
@@ -14,7 +13,8 @@ from werkzeug.test import TestResponse
 from layout.documents import shipped_cutter, shipped_movement
 from layout.trial_walk import TRIAL_FILES, trial_files
 from service.limits import Limits
-from tests.service.fakes import Client, FakePlanner, client_of
+from tests.service.api.conftest import ClientFor
+from tests.service.fakes import Client, FakePlanner
 
 FILES = trial_files(shipped_movement("tarnlight-17"), shipped_cutter("turn-press"))
 MINE: dict[str, Any] = shipped_movement("tarnlight-17").model_dump(mode="json", exclude_none=True) | {"id": "mine-17"}
@@ -152,8 +152,8 @@ def test_a_tune_is_not_taken(client: Client) -> None:
     assert problem_of(as_part) == (400, "/problems/parameter-invalid")
 
 
-def test_bodies_and_parts_over_their_limits_are_refused(tmp_path: Path) -> None:
-    client = client_of(FakePlanner(), tmp_path, Limits(upload_bytes=4000, document_bytes=100))
+def test_bodies_and_parts_over_their_limits_are_refused(client_for: ClientFor) -> None:
+    client = client_for(FakePlanner(), Limits(upload_bytes=4000, document_bytes=100))
 
     part = post_parts(client, {"movement": b"{" + b" " * 100}, "cutter=turn-press")
     body = post_parts(client, {"movement": b"{" + b" " * 5000})

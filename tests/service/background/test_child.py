@@ -22,8 +22,8 @@ LONG_S = 30.0
 
 
 @pytest.fixture(scope="module")
-def shared_parts(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Parts]:
-    opened = parts_of(tmp_path_factory.mktemp("shop"))
+def shared_parts(tmp_path_factory: pytest.TempPathFactory, module_database_url: str | None) -> Iterator[Parts]:
+    opened = parts_of(tmp_path_factory.mktemp("shop"), module_database_url)
     yield opened
     opened.store.close()
 

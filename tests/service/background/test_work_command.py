@@ -14,6 +14,7 @@ from service.commands import work
 from service.commands.arguments import OneLineParser, Tools
 from service.commands.errors import CommandError
 from service.limits import Limits
+from service.parts import Parts
 from tests.service.conftest import environment_of
 
 COMMAND = """
@@ -38,10 +39,10 @@ TOOLS = Tools(planner=walk, limits=Limits(), execute=os.execv)
 
 
 @pytest.mark.parametrize("number", [signal.SIGTERM, signal.SIGINT])
-def test_it_says_what_it_does_and_stops_when_told(tmp_path: Path, number: signal.Signals) -> None:
+def test_it_says_what_it_does_and_stops_when_told(tmp_path: Path, parts: Parts, number: signal.Signals) -> None:
     process = subprocess.Popen(
         [sys.executable, "-c", COMMAND, "--slots", "1"],
-        env={**os.environ, **environment_of(tmp_path)},
+        env={**os.environ, **environment_of(tmp_path, parts.settings.places.database_url)},
         stderr=subprocess.PIPE,
         text=True,
     )

@@ -1,5 +1,7 @@
 """A worker in this process, with real children: orders are planned, fail, are thrown away or handed back."""
 
+import subprocess
+import sys
 import threading
 import time
 from collections.abc import Callable, Iterator
@@ -64,12 +66,6 @@ def shop(any_parts: Parts) -> Parts:
     return any_parts
 
 
-@pytest.fixture
-def small_shop(parts: Parts) -> Parts:
-    open_shop(parts)
-    return parts
-
-
 def test_an_order_is_planned_once_though_its_message_comes_twice(shop: Parts, tmp_path: Path) -> None:
     tune = tune_called("Harvest")
     order_id = place(shop, tune)
@@ -85,16 +81,16 @@ def test_an_order_is_planned_once_though_its_message_comes_twice(shop: Parts, tm
     assert look(shop, order_id).attempt == 1
 
 
-def test_the_real_computation_in_a_child_gives_the_files_that_it_gives_here(small_shop: Parts, tmp_path: Path) -> None:
-    order_id = place(small_shop, TUNE)
-    send(small_shop, order_id)
-    worker = Worker(with_work(small_shop), slots=1)
+def test_the_real_computation_in_a_child_gives_the_files_that_it_gives_here(shop: Parts, tmp_path: Path) -> None:
+    order_id = place(shop, TUNE)
+    send(shop, order_id)
+    worker = Worker(with_work(shop), slots=1)
 
     worker.start()
-    wait_for_state(small_shop, order_id, State.READY)
+    wait_for_state(shop, order_id, State.READY)
     worker.stop()
 
-    assert_planned_once(small_shop, order_id, PlansHere(tmp_path, walk).of(TUNE))
+    assert_planned_once(shop, order_id, PlansHere(tmp_path, walk).of(TUNE))
 
 
 def test_an_order_whose_message_is_lost_is_found_by_the_sweep(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -108,13 +104,32 @@ def test_an_order_whose_message_is_lost_is_found_by_the_sweep(shop: Parts, monke
     assert {look(shop, order_id).attempt for order_id in order_ids} == {1}
 
 
-def test_orders_are_planned_while_the_queue_is_away(small_shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_orders_are_planned_while_the_queue_is_away(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
-    (small_shop.settings.places.data_directory / "queue.sqlite").mkdir()
-    order_id = place(small_shop, tune_called("Harvest"))
+    places = replace(shop.settings.places, queue_url="redis://127.0.0.1:1/0")  # nothing listens on port 1
+    away = replace(shop, settings=replace(shop.settings, places=places))
+    order_id = place(shop, tune_called("Harvest"))
 
-    with at_work(small_shop):
-        wait_for_state(small_shop, order_id, State.READY)
+    with at_work(away):
+        wait_for_state(shop, order_id, State.READY)
+
+
+def test_a_signal_that_comes_to_another_thread_or_at_a_bad_moment_is_heeded() -> None:
+    # A handler in Python runs between two steps of the main thread, which takes none while it waits.
+    lines = (
+        "import signal, threading, time; from service.background.worker import work_until_told\n"
+        "class Idle:\n"
+        "    def start(self): pass\n"
+        "    def stop(self, hurry): return True\n"
+        "def tell():\n"
+        "    time.sleep(0.5)\n"
+        "    signal.pthread_kill(threading.get_ident(), signal.SIGTERM)\n"
+        "print(work_until_told(Idle(), threading.Thread(target=tell).start))\n"
+    )
+
+    ended = subprocess.run([sys.executable, "-c", lines], capture_output=True, text=True, timeout=20, check=True)
+
+    assert ended.stdout == "True\n"
 
 
 def test_an_order_whose_worker_has_gone_is_taken_over(shop: Parts) -> None:
@@ -164,16 +179,16 @@ def test_a_lease_is_renewed_for_as_long_as_planning_takes(shop: Parts) -> None:
     ],
 )
 def test_an_order_that_cannot_be_planned_fails_with_the_reason_and_the_next_is_planned(
-    small_shop: Parts, deed: str, reason: str
+    shop: Parts, deed: str, reason: str
 ) -> None:
-    bad_id, good_id = place(small_shop, tune_called(f"do:{deed};")), place(small_shop, tune_called("Harvest"))
+    bad_id, good_id = place(shop, tune_called(f"do:{deed};")), place(shop, tune_called("Harvest"))
     for order_id in (bad_id, good_id):
-        send(small_shop, order_id)
+        send(shop, order_id)
 
-    with at_work(small_shop, plan_within_s=2, plan_memory_mib=300, most_attempts=2):
-        wait_for_state(small_shop, good_id, State.READY)
+    with at_work(shop, plan_within_s=2, plan_memory_mib=300, most_attempts=2):
+        wait_for_state(shop, good_id, State.READY)
 
-    bad = look(small_shop, bad_id)
+    bad = look(shop, bad_id)
     assert (bad.state, bad.reason) == ("failed", reason)
     assert bad.events == ["order.received", "order.failed"]
     assert bad.plans == []
@@ -226,58 +241,56 @@ def test_a_worker_that_stops_hands_back_what_takes_too_long_and_tells_the_queue(
     queue.close()
 
 
-def test_a_worker_that_is_hurried_hands_back_at_once(small_shop: Parts) -> None:
-    order_id = place(small_shop, tune_called("do:spin;"))
-    send(small_shop, order_id)
+def test_a_worker_that_is_hurried_hands_back_at_once(shop: Parts) -> None:
+    order_id = place(shop, tune_called("do:spin;"))
+    send(shop, order_id)
     hurry = threading.Event()
     hurry.set()
 
-    with at_work(small_shop, stop_within_s=60) as worker:
-        wait_for_state(small_shop, order_id, State.PLANNING)
+    with at_work(shop, stop_within_s=60) as worker:
+        wait_for_state(shop, order_id, State.PLANNING)
         begun_s = time.monotonic()
         worker.stop(hurry=hurry)
         took_s = time.monotonic() - begun_s
 
     assert took_s < 5.0
-    assert look(small_shop, order_id).state == "received"
+    assert look(shop, order_id).state == "received"
 
 
-def test_a_worker_whose_children_do_not_start_takes_no_order(small_shop: Parts) -> None:
-    order_id = place(small_shop, tune_called("Harvest"))
-    send(small_shop, order_id)
-    worker = Worker(with_work(small_shop), slots=1, planner="tests.faults.no_planner")
+def test_a_worker_whose_children_do_not_start_takes_no_order(shop: Parts) -> None:
+    order_id = place(shop, tune_called("Harvest"))
+    send(shop, order_id)
+    worker = Worker(with_work(shop), slots=1, planner="tests.faults.no_planner")
 
     worker.start()
     time.sleep(4.0)  # a child takes a second to start, and to fail
     worker.stop()
 
-    assert (look(small_shop, order_id).state, look(small_shop, order_id).attempt) == ("received", 0)
+    assert (look(shop, order_id).state, look(shop, order_id).attempt) == ("received", 0)
 
 
-def test_a_store_of_files_that_is_away_costs_an_order_no_attempt(
-    small_shop: Parts, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_a_store_of_files_that_is_away_costs_an_order_no_attempt(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 2)
-    order_id = place(small_shop, tune_called("Harvest"))
-    folder = small_shop.settings.places.data_directory / "files"
+    order_id = place(shop, tune_called("Harvest"))
+    folder = shop.settings.places.data_directory / "files"
     shards = [shard for shard in folder.iterdir() if shard.is_dir()]
     for shard in shards:
         shard.rename(folder / f"away-{shard.name}")
         shard.write_text("in the way")  # opening a file below a file fails, but not as one that is lost
-    send(small_shop, order_id)
+    send(shop, order_id)
 
-    with at_work(small_shop):
-        wait_for(lambda: look(small_shop, order_id).attempt > 0)
-        wait_for_state(small_shop, order_id, State.RECEIVED)
+    with at_work(shop):
+        wait_for(lambda: look(shop, order_id).attempt > 0)
+        wait_for_state(shop, order_id, State.RECEIVED)
         for shard in shards:
             shard.unlink()
             (folder / f"away-{shard.name}").rename(shard)
-        wait_for_state(small_shop, order_id, State.READY)
+        wait_for_state(shop, order_id, State.READY)
 
-    assert look(small_shop, order_id).killed == 0
+    assert look(shop, order_id).killed == 0
 
 
-def test_a_worker_does_its_chores_though_one_goes_wrong(small_shop: Parts, caplog: pytest.LogCaptureFixture) -> None:
+def test_a_worker_does_its_chores_though_one_goes_wrong(shop: Parts, caplog: pytest.LogCaptureFixture) -> None:
     done: list[str] = []
 
     def go_wrong() -> None:
@@ -287,7 +300,7 @@ def test_a_worker_does_its_chores_though_one_goes_wrong(small_shop: Parts, caplo
         Chore(name="first", every_s=0.05, work=go_wrong),
         Chore(name="second", every_s=0.05, work=lambda: done.append("second")),
     ]
-    worker = Worker(with_work(small_shop), slots=1, planner=PLANNER, chores=chores)
+    worker = Worker(with_work(shop), slots=1, planner=PLANNER, chores=chores)
 
     worker.start()
     wait_for(lambda: len(done) > 2)

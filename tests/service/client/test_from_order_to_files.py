@@ -16,8 +16,8 @@ WITHIN_S = 120.0
 
 
 @pytest.fixture(scope="module")
-def service(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Running]:
-    with running(tmp_path_factory.mktemp("shop"), with_worker=True) as started:
+def service(tmp_path_factory: pytest.TempPathFactory, module_database_url: str | None) -> Iterator[Running]:
+    with running(tmp_path_factory.mktemp("shop"), module_database_url, with_worker=True) as started:
         yield started
 
 

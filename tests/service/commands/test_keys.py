@@ -140,6 +140,7 @@ def test_what_cannot_be_asked_is_a_clear_error_in_one_line(
     told: str,
 ) -> None:
     monkeypatch.setenv("DISCWRIGHT_DATA", str(parts.settings.places.data_directory))
+    monkeypatch.setenv("DATABASE_URL", parts.settings.database_url)
 
     code = discwright("keys", *arguments)
 

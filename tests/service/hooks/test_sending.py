@@ -435,7 +435,10 @@ def test_a_process_killed_between_sending_and_writing_sends_again_with_the_same_
         "from service.settings import settings_from; parts = open_parts(settings_from(os.environ));"
         f"deliver_due(parts, datetime.datetime.fromisoformat({NOW.isoformat()!r}))"
     )
-    variables = environment_of(tmp_path) | {"DISCWRIGHT_HOOK_NETWORKS": "127.0.0.0/8", "DISCWRIGHT_HOOK_HTTP": "yes"}
+    variables = environment_of(tmp_path, parts.settings.places.database_url) | {
+        "DISCWRIGHT_HOOK_NETWORKS": "127.0.0.0/8",
+        "DISCWRIGHT_HOOK_HTTP": "yes",
+    }
     with listening(Receiver(answer=hang)) as receiver:
         shop, *_ = shop_with_hook(parts, receiver.url)
         place(parts, shop)

@@ -156,7 +156,7 @@ def test_a_process_that_is_told_to_stop_ends_though_a_hook_hangs(parts: Parts, t
         "stop = threading.Event(); signal.signal(signal.SIGTERM, lambda *_: stop.set());"
         "tell_hooks(open_parts(settings_from(os.environ)), stop)"
     )
-    variables = environment_of(tmp_path) | {
+    variables = environment_of(tmp_path, parts.settings.places.database_url) | {
         "DISCWRIGHT_HOOK_NETWORKS": "127.0.0.0/8",
         "DISCWRIGHT_HOOK_HTTP": "yes",
         "DISCWRIGHT_HOOK_TIMEOUT_S": "60",

@@ -12,11 +12,12 @@ from werkzeug.test import TestResponse
 
 from service.access.scopes import Scope
 from service.app import OPENED, create_app
+from service.parts import Parts
 from service.settings import settings_from
 from service.store.faults import StoreBusyError
 from service.store.files import FileLostError, FileStore
 from tests.service.api.guarded import bearing, new_key, problem_of
-from tests.service.conftest import environment_of, parts_of
+from tests.service.conftest import environment_of
 from tests.service.shop import TUNE
 
 pytestmark = pytest.mark.usefixtures("s3_variables")
@@ -96,11 +97,11 @@ def test_a_file_of_another_process_is_there_at_once(bucket: str) -> None:
 
 
 def test_an_order_that_cannot_be_kept_since_the_bucket_is_away_is_refused_and_may_be_sent_again(
-    tmp_path: Path, bucket: str, monkeypatch: pytest.MonkeyPatch
+    parts: Parts, tmp_path: Path, bucket: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    parts_of(tmp_path).store.close()
-    app = create_app(settings_from(environment_of(tmp_path) | {"DISCWRIGHT_FILES": f"s3://{bucket}/shop"}))
-    key = bearing(new_key(parts_of(tmp_path), *Scope))
+    variables = environment_of(tmp_path, parts.settings.places.database_url)
+    app = create_app(settings_from(variables | {"DISCWRIGHT_FILES": f"s3://{bucket}/shop"}))
+    key = bearing(new_key(parts, *Scope))
 
     def place() -> TestResponse:
         form = {"tune": (BytesIO(TUNE), "a.mid"), "order": '{"movement": "fernhollow-31"}'}

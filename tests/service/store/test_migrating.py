@@ -3,6 +3,7 @@
 import subprocess
 import sys
 from importlib.resources import files
+from pathlib import Path
 
 import pytest
 from alembic.config import Config
@@ -12,6 +13,7 @@ from sqlalchemy import text
 from service.parts import Parts
 from service.store.faults import StoreOldError
 from service.store.migrating import NEWEST, bring_up_to_date, check_migrated, migrate
+from tests.service.conftest import environment_of, parts_of
 
 
 def test_the_revision_in_the_code_is_the_newest_of_the_migrations() -> None:
@@ -27,7 +29,8 @@ def test_a_database_is_migrated_once_and_stays_as_it_is(any_parts: Parts) -> Non
     check_migrated(any_parts.store)
 
 
-def test_a_database_of_a_later_version_is_left_alone_and_told(parts: Parts) -> None:
+def test_a_database_of_a_later_version_is_left_alone_and_told(tmp_path: Path, module_database_url: str | None) -> None:
+    parts = parts_of(tmp_path, module_database_url)  # of its own, which no other test finds so
     with parts.store.writing() as session:
         session.execute(text("UPDATE alembic_version SET version_num = '9999'"))
 
@@ -35,14 +38,15 @@ def test_a_database_of_a_later_version_is_left_alone_and_told(parts: Parts) -> N
         bring_up_to_date(parts.store)
     with pytest.raises(StoreOldError, match="revision 9999, not 0001"):
         check_migrated(parts.store)
+    parts.store.close()
 
 
-def test_opening_a_migrated_database_imports_no_alembic(parts: Parts) -> None:
+def test_opening_a_migrated_database_imports_no_alembic(parts: Parts, tmp_path: Path) -> None:
     source = (
         "import os, sys; from service.parts import open_parts; from service.settings import settings_from; "
         "open_parts(settings_from(os.environ)).store.close(); print('alembic' in sys.modules)"
     )
-    environment = {"DISCWRIGHT_DATA": str(parts.settings.places.data_directory)}
+    environment = environment_of(tmp_path, parts.settings.places.database_url)
 
     told = subprocess.run(
         [sys.executable, "-c", source], env=environment, capture_output=True, text=True, check=True, timeout=60

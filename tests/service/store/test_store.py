@@ -18,6 +18,7 @@ from service.store.ids import new_id
 from service.store.migrating import check_migrated, migrate
 from service.store.store import Store
 from service.store.tables import Counter, Row
+from tests.service.conftest import sqlite_alone
 
 DIALECT = None  # of no matter to a Moment
 
@@ -80,6 +81,7 @@ def test_writers_take_turns_and_lose_no_count(any_parts: Parts) -> None:
     assert counted(any_parts) == 40  # 4 threads of 10
 
 
+@sqlite_alone("its lock")
 def test_a_database_held_by_another_is_busy_and_works_again_after(
     parts: Parts, monkeypatch: pytest.MonkeyPatch
 ) -> None:
