@@ -98,7 +98,7 @@ def test_a_note_placed_by_hand_in_another_octave_keeps_the_share_that_octave_mov
 
 def test_the_best_transposition_counts_what_a_ruling_moves_by_an_octave() -> None:
     # As written both sound, E5 for 6 tenths; an octave lower E5 fits whole, and G4 has no tooth.
-    arrangement = ruled([(0.0, "E5", 127), (4.0, "G4", 100)], place(0, 4), transpose={"mode": "best", "range": 12})
+    arrangement = ruled([(0.0, "E5", 127), (4.0, "G4", 1)], place(0, 4), transpose={"mode": "best", "range": 12})
 
     assert arrangement.transposed_semitones == 0
     assert played(arrangement) == [(0.0, 4), (4.0, 5)]
