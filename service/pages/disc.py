@@ -62,7 +62,7 @@ def disc_page(asked: Request, shown: ShownDisc) -> Response:
     return page(
         asked,
         "disc.html",
-        scripts=("disc",),
+        scripts=("disc", "rulings"),
         shown=shown,
         data=disc_data(shown),
         verdict=verdict_of(shown),
@@ -92,4 +92,5 @@ def _shown(kept: KeptLayout, reason: str | None) -> ShownDisc:
         hearing={of: f"{base}/hearing.wav?of={of}" for of in ("disc", "written")},
         despite_findings=given_despite,
         asks_reason=not kept.good_to_cut,
+        rulings_at=f"{base}/again",
     )
