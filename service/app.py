@@ -41,6 +41,8 @@ from service.background.queue import Queue
 from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
 from service.pages.disc import disc_routes
+from service.pages.machines import machine_routes
+from service.pages.measuring import measuring_routes
 from service.pages.own_routes import own_routes
 from service.pages.problems_shown import show_problems
 from service.pages.reference import reference_routes
@@ -83,7 +85,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
-    for routes in _pages(desk, settings.places.public_url):
+    for routes in _pages(desk, parts):
         app.register_blueprint(routes)
     app.after_request(with_safe_head)
     show_problems(app)
@@ -119,11 +121,13 @@ def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterat
     yield sign_in_routes(parts, _now)
 
 
-def _pages(desk: LayoutDesk, public_url: str | None) -> Iterator[Blueprint]:
+def _pages(desk: LayoutDesk, parts: Parts) -> Iterator[Blueprint]:
     """What people see."""
     yield own_routes()
     yield disc_routes(desk)
-    yield reference_routes(public_url)
+    yield reference_routes(parts.settings.places.public_url)
+    yield machine_routes(parts)
+    yield measuring_routes()
 
 
 def _now() -> datetime:
