@@ -9,7 +9,7 @@ import { drawForce } from "./force.js";
 import { History } from "./history.js";
 import { openMarks, thingsByNote } from "./marks.js";
 import { pageAt, partsOf, putParts } from "./pages.js";
-import { notesOf } from "./settings.js";
+import { held, holdsPitch, letGo, notesOf } from "./settings.js";
 import { differenceRows, faultsOf } from "./words.js";
 
 const SETTINGS = "settings.json";
@@ -20,12 +20,15 @@ export class Rulings {
   #state;
   #history;
   #marks;
+  #first;
   #section = find("#rulings");
+  #hold = find("#ruling-hold");
   #fault = find("#ruling-fault");
 
   // `disc` is what openDisc gives; `settings` those that the disc shown was made with.
   constructor(disc, data, settings) {
     [this.#disc, this.#state] = [disc, disc.state];
+    this.#first = settings;
     this.#history = new History({ settings, data, parts: partsOf(document), title: document.title, said: "" });
     this.#marks = openMarks(disc);
     find("#ruling-undo").addEventListener("click", () => this.undo());
@@ -41,8 +44,9 @@ export class Rulings {
   }
 
   // Asks for the best arrangement with these settings, and shows it.
-  async rule(settings, words) {
+  async rule(wanted, words) {
     if (this.#isBusy) return;
+    const settings = this.#hold.checked ? held(wanted, this.#state.layout.transposed_semitones) : letGo(wanted, this.#first);
     this.#busy(true);
     const began_ms = performance.now();
     try {
@@ -117,6 +121,7 @@ export class Rulings {
     this.#fault.replaceChildren();
     find("#ruling-undo").disabled = !this.#history.canUndo;
     find("#ruling-redo").disabled = !this.#history.canRedo;
+    this.#hold.checked = this.#history.now.settings === this.#first || holdsPitch(this.settings);
     find("#ruling-save").href = this.#history.now.data.rulings_at.replace(AGAIN, SETTINGS);
     this.#drawChoices();
     this.#drawForce();

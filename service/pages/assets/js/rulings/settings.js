@@ -26,6 +26,18 @@ export const leaveOut = (settings, notes) => ruled(settings, notes, notes.map((n
 export const mustSound = (settings, notes) => ruled(settings, notes, [{ note: notes[0], do: "must-sound" }]);
 export const placeOn = (settings, notes, track) => ruled(settings, notes, [{ note: notes[0], do: "place", track }]);
 
+export const holdsPitch = (settings) => settings.transpose?.mode === "fixed";
+
+// The same settings with the tune held at a transposition, or let go: then as `first` had it, or the best of all.
+export function held(settings, semitones) {
+  return { ...settings, transpose: { mode: "fixed", semitones } };
+}
+
+export function letGo(settings, first) {
+  const { transpose: _, ...rest } = settings;
+  return first.transpose && !holdsPitch(first) ? { ...rest, transpose: first.transpose } : rest;
+}
+
 // The notes that a projection or a left-out note stands for; none for a pluck that is written nowhere.
 export const notesOf = (thing) => (thing.kind === "left_out" ? [thing.note] : thing.notes);
 

@@ -27,6 +27,8 @@ export function trackWords(track) {
 // A difference as rows of words, most telling first; `before` and `after` are the layouts.
 export function differenceRows(difference, before, after) {
   const rows = [];
+  const [low, high] = difference.transposed;
+  if (low !== high) rows.push({ kind: "transposed", words: text("rulings.transposed", { was: signed(low), is: signed(high) }) });
   for (const [kind, notes, layout] of [
     ["gone", difference.gone, before],
     ["added", difference.added, after],
@@ -36,8 +38,6 @@ export function differenceRows(difference, before, after) {
   }
   const [was, is] = difference.worth;
   rows.push({ kind: "worth", words: worthWords(was, is) });
-  const [low, high] = difference.transposed;
-  if (low !== high) rows.push({ kind: "transposed", words: text("rulings.transposed", { was: signed(low), is: signed(high) }) });
   return rows;
 }
 
