@@ -43,8 +43,10 @@ from service.orders.proofs import PURPOSE, ProofLinks
 from service.pages.disc import disc_routes
 from service.pages.machines import machine_routes
 from service.pages.measuring import measuring_routes
+from service.pages.orders import orders_routes
 from service.pages.own_routes import own_routes
 from service.pages.problems_shown import show_problems
+from service.pages.proof import proof_page_routes
 from service.pages.reference import reference_routes
 from service.parts import Parts, open_parts
 from service.planner import AnyPlanner, TheWalk
@@ -108,7 +110,7 @@ def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts, shel
 
 def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is kept, and who may see it."""
-    links = ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
+    links = _links(parts)
     yield order_routes(parts, queue.send)
     yield decision_routes(parts, queue.send, links)
     yield order_file_routes(parts, shelf)
@@ -128,6 +130,12 @@ def _pages(desk: LayoutDesk, parts: Parts) -> Iterator[Blueprint]:
     yield reference_routes(parts.settings.places.public_url)
     yield machine_routes(parts)
     yield measuring_routes()
+    yield orders_routes(parts)
+    yield proof_page_routes(parts, _links(parts))
+
+
+def _links(parts: Parts) -> ProofLinks:
+    return ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
 
 
 def _now() -> datetime:

@@ -3,7 +3,7 @@
 from collections.abc import Callable, Mapping
 from typing import Any, TypeVar
 
-from flask import Blueprint, Request, Response, request, url_for
+from flask import Blueprint, Request, Response, request
 
 from layout.documents import read_settings
 from layout.documents.reading import Part
@@ -19,6 +19,7 @@ from service.api.operations import orders
 from service.api.order_answers import order_given
 from service.api.orders import Send
 from service.api.problems import ProblemError
+from service.api.proofs import proof_page
 from service.api.request_models import read_text
 from service.orders.deciding import Release, Seen, cancel_order, release_order, replan_order, report_on_order
 from service.orders.finding import find_order
@@ -83,7 +84,7 @@ def decision_routes(parts: Parts, send: Send, links: ProofLinks) -> Blueprint:
                 more={"state": order.state},
             )
         text = links.make(Proof(order_id=order.id, revision=order.plan_revision))
-        address = url_for("proofs.show", text=text)
+        address = proof_page(text)
         if not (parts.settings.places.public_url or request.host):
             raise ProblemError(name="request-malformed", detail="the header Host names no host to link to")
         base = parts.settings.places.public_url or request.host_url

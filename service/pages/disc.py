@@ -2,6 +2,9 @@
 
 import json
 import re
+from collections.abc import Mapping
+from types import MappingProxyType
+from typing import Any
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
@@ -51,17 +54,25 @@ def disc_routes(desk: LayoutDesk) -> Blueprint:
     return routes
 
 
-def disc_page(asked: Request, shown: ShownDisc) -> Response:
+def disc_page(
+    asked: Request,
+    shown: ShownDisc,
+    *,
+    template: str = "disc.html",
+    beside: Mapping[str, Any] = MappingProxyType({}),
+) -> Response:
     """The page of a disc, wherever it comes from.
 
     Args:
         asked: The request.
         shown: The disc.
+        template: One that extends that of the page.
+        beside: What such a template shows beside the disc.
     """
     movement = shown.movement
     return page(
         asked,
-        "disc.html",
+        template,
         scripts=("disc", "rulings"),
         shown=shown,
         data=disc_data(shown),
@@ -73,6 +84,7 @@ def disc_page(asked: Request, shown: ShownDisc) -> Response:
         findings=findings_of(shown.layout),
         cautions=cautions_of(shown),
         plots=plots_of(shown.report, before_music_deg=movement.before_music_deg, revolution_s=movement.revolution_s),
+        **beside,
     )
 
 
