@@ -44,7 +44,7 @@ export function differenceRows(difference, before, after) {
 function worthWords(was, is) {
   const grouped = (value) => value.toLocaleString("en-GB");
   if (was === is) return text("rulings.worth_same", { is: grouped(is) });
-  const change = was ? signed(Number(((100 * (is - was)) / was).toFixed(2))) : "–";
+  const change = was ? signed(Number(((100 * (is - was)) / was).toPrecision(2))) : "–";
   return text("rulings.worth", { was: grouped(was), is: grouped(is), change });
 }
 
