@@ -169,4 +169,4 @@ def _off(worth: Stated | None) -> str:
 def _shown(value: object) -> str:
     if isinstance(value, bool):
         return text_of("movements.yes" if value else "movements.no")
-    return f"{value:g}" if isinstance(value, float) and abs(value) < 1e6 and abs(value) >= 1e-3 else str(value)  # noqa: PLR2004
+    return f"{value:.10g}" if isinstance(value, float) else str(value)

@@ -30,6 +30,7 @@ export async function save(desk) {
 
 async function takeSaved(desk, saved) {
   const { data } = desk;
+  const isSame = data.tag === saved.entity_tag;
   Object.assign(data, { id: saved.id, tag: saved.entity_tag });
   desk.showsAll = false;
   desk.touched.clear();
@@ -37,7 +38,7 @@ async function takeSaved(desk, saved) {
   const kept = await fetch(`${data.save_at}${saved.id}?as=written`, { headers: { Accept: "application/json" } });
   if (kept.ok) desk.load(await kept.text());
   desk.isChanged = false;
-  const words = worded("saved", { revision: saved.revision });
+  const words = isSame ? worded("unchanged") : worded("saved", { revision: saved.revision });
   answer(el("p", { class: "note good" }, words, " ", el("a", { href: data.page_at + saved.id }, worded("look"))));
   say(words);
 }
