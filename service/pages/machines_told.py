@@ -65,16 +65,15 @@ def values_of(document: KeptDocument) -> tuple[tuple[str, tuple[ValueTold, ...]]
     told = document_told(read)
     _, stated = read_json(document.text, document=document.kind)
     plain = {key: value for key, value in told.items() if key not in TOLD_ELSEWHERE and not _is_group(value)}
-    groups = {"plain": plain} | {
-        key: value for key, value in told.items() if key not in TOLD_ELSEWHERE and _is_group(value) and value
-    }
-    return tuple(
-        (
-            text_of("movements.plain") if name == "plain" else field_words(name),
-            tuple(_rows(value, "" if name == "plain" else f"/{name}", (), stated)),
-        )
-        for name, value in groups.items()
-    )
+    groups: dict[str, tuple[str, Any]] = {"": (text_of("movements.plain"), plain)}
+    for name, value in told.items():
+        if name in TOLD_ELSEWHERE or not _is_group(value):
+            continue
+        if isinstance(value, Mapping):
+            groups[f"/{name}"] = (field_words(name), value)
+        else:
+            groups |= {f"/{name}/{n}": (f"{field_words(name)} · {n + 1}", part) for n, part in enumerate(value)}
+    return tuple((title, tuple(_rows(value, place, (), stated))) for place, (title, value) in groups.items() if value)
 
 
 def tracks_of(movement: Movement, cutter: Cutter | None = None) -> tuple[TrackTold, ...]:
@@ -140,6 +139,11 @@ def _rows(
         for key, part in value.items():
             words = field_words(key) if _has_words(key) else key
             yield from _rows(part, f"{pointer}/{key}", (*names, words), stated, key)
+    elif isinstance(value, list | tuple) and not any(
+        _is_group(part) or f"{pointer}/{place}" in stated for place, part in enumerate(value)
+    ):
+        if value:
+            yield ValueTold(name=" · ".join(names), value=" / ".join(map(_shown, value)), plus_minus="", basis="")
     elif isinstance(value, list | tuple):
         for place, part in enumerate(value):
             yield from _rows(part, f"{pointer}/{place}", (*names, str(place + 1)), stated, field)

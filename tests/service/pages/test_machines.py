@@ -12,8 +12,9 @@ from layout.documents import shipped_movement, shipped_text
 from service.access.scopes import Scope
 from service.app import create_app
 from service.pages.machines_comb import comb_chart
-from service.pages.machines_told import tracks_of, unit_of
+from service.pages.machines_told import tracks_of, unit_of, values_of
 from service.parts import Parts
+from service.store.documents import KeptDocument
 from tests.service.api.guarded import bearing, new_key
 from tests.service.pages.test_own_routes import HTML, Tags
 
@@ -153,3 +154,13 @@ def test_a_track_repeats_no_sooner_than_its_wheel_its_damper_and_its_metal_let_i
 )
 def test_a_field_has_the_unit_its_name_carries(name: str, unit: str) -> None:
     assert unit_of(name) == unit
+
+
+def test_values_stand_in_groups_and_a_list_of_numbers_in_one_row() -> None:
+    press = KeptDocument(kind="cutter", id="turn-press", revision=1, text=shipped_text("turn-press"), owner_id=None)
+    groups = {name: {row.name: row.value for row in rows} for name, rows in values_of(press)}
+
+    assert groups["In general"]["Kerf"] == "0 mm"
+    assert groups["Tools · 3"]["Working edge ahead of the strike point"] == "-1.1 mm"
+    assert groups["Least sizes in sheet thicknesses: error, warning, advice below"]["Hole"] == "1 / 1.2 / 1.5"
+    assert groups["Rates"]["For each hit"] == "0.004"

@@ -1,5 +1,5 @@
 // A document as text: what fits on a line stands on a line, as people write such documents.
-const WIDEST = 110;
+const WIDEST = 160;
 
 export function written(value, depth = 0) {
   const flat = inOneLine(value);
