@@ -31,12 +31,12 @@ FOLDER = Path(service.pages.__file__).parent / "assets" / "js"
 NODE = shutil.which("node")
 by_node = pytest.mark.skipif(NODE is None, reason="NOT RUN: no node here to run what is pure of the pages' scripts")
 
-# A comb of C4 on two tracks, C5, C3 and D4, and a track without a usable tooth.
+# A comb of C5, C4 on two tracks, C3 and D4, and a track without a usable tooth.
 MOVEMENT = {
     "tracks": [
         {"pitch": pitch, "key": key, "teeth": [{"tooth": place}] if key else []}
         for place, (pitch, key) in enumerate(
-            [("C4", 60), ("C4", 60), ("C5", 72), ("C3", 48), ("D4", 62), (None, None)], start=1
+            [("C5", 72), ("C4", 60), ("C4", 60), ("C3", 48), ("D4", 62), (None, None)], start=1
         )
     ]
 }
@@ -142,17 +142,17 @@ def test_the_tune_is_held_at_its_transposition_or_let_go_to_what_was_asked_at_fi
 def test_a_note_may_be_put_on_tracks_of_its_pitch_in_any_octave_the_nearest_first() -> None:
     offered = run("settings.js", "tracksFor", "tracksFor(0, layout, movement).map((one) => [one.track, one.octaves])")
 
-    assert offered == [[1, 0], [2, 0], [3, 1], [4, -1]]  # not D4, and not the track without a tooth
+    assert offered == [[2, 0], [3, 0], [1, 1], [4, -1]]  # not D4, and not the track without a tooth
 
 
 @by_node
 def test_a_note_on_a_higher_octave_is_moved_from_where_it_is() -> None:
-    at = '{ kind: "projection", notes: [0], track: 3 }'  # C4 on C5's track
+    at = '{ kind: "projection", notes: [0], track: 1 }'  # C4 on C5's track
 
     down = run("settings.js", "octaveTrack", f"octaveTrack({at}, -1, layout, movement).track")
     up = run("settings.js", "octaveTrack", f"octaveTrack({at}, 1, layout, movement)")
 
-    assert (down, up) == (1, None)  # no C6 on the comb
+    assert (down, up) == (2, None)  # no C6 on the comb
 
 
 @by_node
