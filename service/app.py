@@ -43,6 +43,7 @@ from service.orders.proofs import PURPOSE, ProofLinks
 from service.pages.disc import disc_routes
 from service.pages.machines import machine_routes
 from service.pages.measuring import measuring_routes
+from service.pages.new_disc import new_disc_routes
 from service.pages.orders import orders_routes
 from service.pages.own_routes import own_routes
 from service.pages.problems_shown import show_problems
@@ -126,6 +127,7 @@ def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterat
 def _pages(desk: LayoutDesk, parts: Parts) -> Iterator[Blueprint]:
     """What people see."""
     yield own_routes()
+    yield new_disc_routes(parts)
     yield disc_routes(desk)
     yield reference_routes(parts.settings.places.public_url)
     yield machine_routes(parts)

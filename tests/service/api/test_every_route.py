@@ -47,6 +47,7 @@ TABLE: dict[str, Access] = {
     "GET /problems": OPEN,
     "GET /problems/<name>": OPEN,
     "GET /assets/<asked_digest>/<path:name>": OPEN,
+    "GET /new": ORDER_OR_LOOPBACK,
     "GET /sign-in": OPEN,
     "GET /reference": OPEN,
     "GET /measuring": OPEN,

@@ -10,7 +10,7 @@ export class Problem extends Error {
 
 let token = null;
 
-async function tokenOfThisBrowser() {
+export async function tokenOfThisBrowser() {
   if (document.getElementById("sign-out") === null) return ""; // nobody is signed in here
   if (token === null) {
     const answer = await fetch("/v1/keys/me", { headers: { Accept: "application/json" } });
