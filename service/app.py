@@ -41,8 +41,13 @@ from service.background.queue import Queue
 from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
 from service.pages.disc import disc_routes
+from service.pages.machines import machine_routes
+from service.pages.measuring import measuring_routes
+from service.pages.new_disc import new_disc_routes
+from service.pages.orders import orders_routes
 from service.pages.own_routes import own_routes
 from service.pages.problems_shown import show_problems
+from service.pages.proof import proof_page_routes
 from service.pages.reference import reference_routes
 from service.parts import Parts, open_parts
 from service.planner import AnyPlanner, TheWalk
@@ -83,7 +88,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     app.register_blueprint(metrics_routes(parts, queue, counted))
     app.register_blueprint(readiness_routes(parts))
     app.register_blueprint(openapi_routes(settings.places.public_url))
-    for routes in _pages(desk, settings.places.public_url):
+    for routes in _pages(desk, parts):
         app.register_blueprint(routes)
     app.after_request(with_safe_head)
     show_problems(app)
@@ -106,7 +111,7 @@ def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts, shel
 
 def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is kept, and who may see it."""
-    links = ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
+    links = _links(parts)
     yield order_routes(parts, queue.send)
     yield decision_routes(parts, queue.send, links)
     yield order_file_routes(parts, shelf)
@@ -119,11 +124,20 @@ def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterat
     yield sign_in_routes(parts, _now)
 
 
-def _pages(desk: LayoutDesk, public_url: str | None) -> Iterator[Blueprint]:
+def _pages(desk: LayoutDesk, parts: Parts) -> Iterator[Blueprint]:
     """What people see."""
     yield own_routes()
+    yield new_disc_routes(parts)
     yield disc_routes(desk)
-    yield reference_routes(public_url)
+    yield reference_routes(parts.settings.places.public_url)
+    yield machine_routes(parts)
+    yield measuring_routes()
+    yield orders_routes(parts)
+    yield proof_page_routes(parts, _links(parts))
+
+
+def _links(parts: Parts) -> ProofLinks:
+    return ProofLinks(parts.secret_for(PURPOSE), days=parts.settings.work.quote_days)
 
 
 def _now() -> datetime:

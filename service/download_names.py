@@ -12,6 +12,7 @@ LONGEST_TITLE_BYTES = 60  # bytes in UTF-8, for the same reason
 LONGEST_MATERIAL = 40  # characters
 NOT_GOOD = "NOT-GOOD-TO-CUT"
 ALL_FILES = "all-files.zip"
+SETTINGS = "settings.json"
 ENDINGS = {
     "disc.dxf": ".dxf",
     "record.dxf": "_record-not-for-cutting.dxf",
@@ -22,6 +23,7 @@ ENDINGS = {
     "press.nc": "_press.nc",
     "work-sheet.pdf": "_work-sheet.pdf",
     "making.json": "_making.json",
+    SETTINGS: "_settings.json",
     ALL_FILES: "_all-files.zip",
 }
 

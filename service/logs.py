@@ -30,6 +30,7 @@ SECRETS = (
     re.compile(r"(?i)(?<=cookie: )[^\r\n\"\\]+"),
     re.compile(r"(?<=/sign-in/)[^\s\"'/?\\]+"),
     re.compile(r"(?<=/proofs/)[^\s\"'/?\\]+"),
+    re.compile(r"(?<=/proof/)[^\s\"'/?\\]+"),
     re.compile(r"(?<=://)[^\s\"'/@\\]*:[^\s\"'/@\\]+(?=@)"),  # user and password of a database, a queue or a proxy
     re.compile(r"(?i)(?<=[?&;\s])(?:\w*(?:password|secret|token|signature|key)\w*)=[^\s\"'\\&;]+"),
     re.compile(r"(?<=[\w/]\?)[^\s\"'\\]*=[^\s\"'\\]*"),  # queries

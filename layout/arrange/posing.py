@@ -117,12 +117,12 @@ def pose(wanted: Wanted, semitones: int, rules: Rules) -> Problem:
 
 
 def most_kept(wanted: Wanted, semitones: int, rules: Rules) -> int:
-    """The weight of all plucks whose pitch the comb has, in any octave where octave moves are allowed."""
+    """The weight of all plucks whose pitch the comb has, in any octave where moves or rulings may take them there."""
     keys = np.array(sorted(rules.comb.tracks_of_key), dtype=np.int64)
     pitch = wanted.pitch + semitones
-    if rules.octaves != "none":
-        keys, pitch = keys % OCTAVE, pitch % OCTAVE
-    return int(wanted.weight[np.isin(pitch, keys)].sum())
+    may_move = (wanted.on_track != NO_TRACK) | (rules.octaves != "none")
+    sounds = np.isin(pitch, keys) | (may_move & np.isin(pitch % OCTAVE, keys % OCTAVE))
+    return int(wanted.weight[sounds].sum())
 
 
 def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntArray, IntArray, IntArray]:
@@ -142,8 +142,8 @@ def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntA
     ruled = np.flatnonzero(~free)
     ruled_keys = np.array([rules.comb.key_of_track[int(one)] for one in wanted.on_track[ruled]], dtype=np.int64)
     moved = ruled_keys - (wanted.pitch[ruled] + semitones)
-    # By hand a note may go to any octave of its pitch, once octave moves are allowed at all.
-    sounds = (moved == 0) | ((rules.octaves != "none") & (moved % OCTAVE == 0))
+    # By hand a note may go to any octave of its pitch, whatever the settings let the others do.
+    sounds = moved % OCTAVE == 0
     fits = np.where(moved == 0, FIT_GRAINS, rules.octave_fit)
     found.append((ruled[sounds], wanted.on_track[ruled][sounds], fits[sounds]))
     pluck, track, fit = (np.concatenate(part) for part in zip(*found, strict=True))

@@ -68,7 +68,7 @@ class Ruling(SettingsPart):
     """The note's index, from 0, as `notes` of layout.json counts them."""
 
     do: Literal["leave-out", "must-sound", "place"]
-    """leave-out; must-sound: on any track that sounds it; place: on the track stated."""
+    """leave-out; must-sound: on any track that sounds it; place: on the track stated, in any octave of its pitch."""
 
     track: Annotated[int, Field(ge=1), IS_WHOLE] | None = None
     """The number of the track, from 1, with do "place" only."""
@@ -102,7 +102,8 @@ class Settings(SettingsPart):
     """By how much the whole tune is transposed; the default is what keeps the most weight within ±12 semitones."""
 
     octave_moves: Literal["none", "outer", "all"] = "none"
-    """Which notes may be moved by an octave. outer: those that are the highest or the lowest at their onset."""
+    """Which notes may be moved by an octave. outer: those that are the highest or the lowest at their onset.
+    A ruling may move a note by octaves whatever stands here."""
 
     octave_fit: Annotated[Share, Field(gt=0)] = 0.6
     """The share of its weight (above 0, to 1) that a note keeps where it is moved by an octave."""

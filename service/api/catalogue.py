@@ -110,7 +110,7 @@ class _Shelf:
         with self._store.reading() as session:
             found = documents_in_force(session, owner_id, self._kind, after=query.after, most=query.limit + 1)
         listed = found[: query.limit]
-        told = [{**_line(document), "kept_by": _kept_by(document.owner_id, asker)} for document in listed]
+        told = [{**_line(document), "kept_by": whose_is(document.owner_id, asker)} for document in listed]
         response = document_response({f"{self._kind}s": told}, asked)
         if len(found) > query.limit:
             following = urlencode({"after": listed[-1].id, "limit": query.limit})
@@ -209,7 +209,7 @@ class _Shelf:
         return response
 
     def _revision_told(self, document_id: str, one: KeptRevision, asker: Asker | None) -> dict[str, Any]:
-        kept_by = _kept_by(one.owner_id, asker)
+        kept_by = whose_is(one.owner_id, asker)
         return {
             "revision": one.revision,
             "sha256": one.digest,
@@ -237,7 +237,8 @@ def _line(document: KeptDocument) -> dict[str, Any]:
     return {**cutter_told(read_cutter(document.text)), "revision": document.revision}
 
 
-def _kept_by(owner_id: str | None, asker: Asker | None) -> str:
+def whose_is(owner_id: str | None, asker: Asker | None) -> str:
+    """Who keeps a document, as who asks sees it: "own", "shop" or "shipped"."""
     if owner_id is None:
         return "shipped"
     return "own" if asker is not None and owner_id == asker.owner_id else "shop"

@@ -10,7 +10,7 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
-from layout.documents import Movement
+from layout.documents import Movement, Settings
 from layout.file_names import CUTTING_FILES, FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
@@ -25,8 +25,8 @@ from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
 from service.api.posted import read_posted
 from service.api.problems import ProblemError
-from service.api.request_models import read_arguments
-from service.download_names import ALL_FILES, NamedDisc, content_disposition, download_name
+from service.api.request_models import read_arguments, read_body
+from service.download_names import ALL_FILES, SETTINGS, NamedDisc, content_disposition, download_name
 from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES
 from service.parts import Parts
@@ -93,8 +93,34 @@ def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Bluepr
         response.make_conditional(request)
         return response
 
+    _add_settings(routes, desk, teller, limits)
     _add_hearings(routes, desk, shelf)
     return routes
+
+
+def _add_settings(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTeller", limits: Limits) -> None:
+    @routes.get("/<fingerprint>/settings.json")
+    @describes(layouts.SETTINGS)
+    @open_on_loopback(Scope.ORDER)
+    def give_settings(fingerprint: str) -> Response:
+        kept = _found(desk, fingerprint)
+        response = Response(kept.inputs.settings, content_type=JSON_MEDIA_TYPE)
+        named = _named(kept, not_good=False)
+        response.headers["Content-Disposition"] = content_disposition(named, SETTINGS, how="attachment")
+        response.headers["Cache-Control"] = "private, no-cache"
+        response.add_etag()
+        response.make_conditional(request)
+        return response
+
+    @routes.post("/<fingerprint>/again")
+    @describes(layouts.AGAIN)
+    @open_on_loopback(Scope.ORDER)
+    def make_again(fingerprint: str) -> Response:
+        reason = read_arguments(request, DespiteQuery).despite_findings
+        kept = _found(desk, fingerprint)
+        asked = read_body(request, Settings, document="settings", most_bytes=limits.document_bytes)
+        inputs = replace(kept.inputs, settings=asked.model_dump_json(exclude_unset=True).encode())
+        return teller.made(desk.lay_out_discs(inputs, _owner_id()), None, reason)
 
 
 def _add_hearings(routes: Blueprint, desk: LayoutDesk, shelf: HearingShelf) -> None:

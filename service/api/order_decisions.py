@@ -3,7 +3,7 @@
 from collections.abc import Callable, Mapping
 from typing import Any, TypeVar
 
-from flask import Blueprint, Request, Response, request, url_for
+from flask import Blueprint, Request, Response, request
 
 from layout.documents import read_settings
 from layout.documents.reading import Part
@@ -19,6 +19,7 @@ from service.api.operations import orders
 from service.api.order_answers import order_given
 from service.api.orders import Send
 from service.api.problems import ProblemError
+from service.api.proofs import proof_page
 from service.api.public_links import public_link
 from service.api.request_models import read_text
 from service.orders.deciding import Release, Seen, cancel_order, release_order, replan_order, report_on_order
@@ -84,8 +85,7 @@ def decision_routes(parts: Parts, send: Send, links: ProofLinks) -> Blueprint:
                 more={"state": order.state},
             )
         text = links.make(Proof(order_id=order.id, revision=order.plan_revision))
-        address = url_for("proofs.show", text=text)
-        href = public_link(request, address, parts.settings.places.public_url)
+        href = public_link(request, proof_page(text), parts.settings.places.public_url)
         return json_response({"href": href, "revision": order.plan_revision}, status=201)
 
     return routes

@@ -21,6 +21,7 @@ from service.orders.views import OrderView, PlanView, order_view, plan_view
 from service.parts import Parts
 from service.store.tables import Order
 
+PAGE = "/proof"  # where people see a proof, the signed text after it; what lies under /v1 is for programs
 SHOWN = ("disc.svg", "report.json")  # what a customer may see of each disc
 
 
@@ -32,22 +33,22 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     @describes(proofs.SHOW)
     @open_but_counted
     def show(text: str) -> Response:
-        proof = _proof(links, text)
-        order, plan = _shown(parts, proof)
+        proof = proof_of(links, text)
+        order, plan = proof_shown(parts, proof)
         return json_response(
             {
                 "reference": order.reference,
                 "title": plan.told["title"],
                 "movement": {"id": order.movement_id, "revision": order.movement_revision},
                 "revision": plan.revision,
-                "waits_for_decision": _waits(order, proof),
+                "waits_for_decision": waits_for_decision(order, proof),
                 "discs": [
                     {
                         "number": disc["number"],
                         "of": disc["of"],
                         "asked_count": disc["asked_count"],
                         "kept_count": disc["kept_count"],
-                        "files": {name: f"/v1/proofs/{text}/files/{disc['number']}/{name}" for name in SHOWN},
+                        "files": {name: f"{proof_address(text)}/files/{disc['number']}/{name}" for name in SHOWN},
                     }
                     for disc in plan.told["discs"]
                 ],
@@ -58,7 +59,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     @describes(proofs.FILE)
     @open_but_counted
     def give(text: str, disc: int, name: str) -> Response:
-        _, plan = _shown(parts, _proof(links, text))
+        _, plan = proof_shown(parts, proof_of(links, text))
         if name not in SHOWN:
             raise ProblemError(name="route-unknown", detail=f"a proof shows {', '.join(SHOWN)} alone")
         return file_response(parts, file_of(plan, disc, name), request)
@@ -67,7 +68,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     @describes(proofs.VERDICT)
     @open_but_counted
     def say(text: str) -> Response:
-        proof = _proof(links, text)
+        proof = proof_of(links, text)
         text_said = body_of(request, parts.settings.limits.document_bytes)
         body = read_text(request, VerdictBody, text_said, document="verdict")
         customer_says(parts.store, proof.order_id, proof.revision, body.verdict, by=body.by, note=body.note)
@@ -82,25 +83,45 @@ def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: Hea
     @describes(hearings.PROOF_SOUND)
     @open_but_counted
     def give_sound(text: str, disc: int) -> Response:
-        _, plan = _shown(parts, _proof(links, text))
+        _, plan = proof_shown(parts, proof_of(links, text))
         return sound_response(shelf, *heard_of(parts, plan, disc), request)
 
     @routes.get("/<text>/files/<int:disc>/hearing.mid")
     @describes(hearings.PROOF_PLUCKS)
     @open_but_counted
     def give_plucks(text: str, disc: int) -> Response:
-        _, plan = _shown(parts, _proof(links, text))
+        _, plan = proof_shown(parts, proof_of(links, text))
         return plucks_response(shelf, *heard_of(parts, plan, disc), request)
 
 
-def _proof(links: ProofLinks, text: str) -> Proof:
+def proof_page(text: str) -> str:
+    """Where people see the proof of a signed text."""
+    return f"{PAGE}/{text}"
+
+
+def proof_address(text: str) -> str:
+    """Where programs see it."""
+    return f"/v1/proofs/{text}"
+
+
+def proof_of(links: ProofLinks, text: str) -> Proof:
+    """What a signed text shows.
+
+    Raises:
+        ProblemError: It was not made here, or is too old.
+    """
     try:
         return links.read(text)
     except ProofRefusedError as refusal:
         raise ProblemError(name="proof-refused", detail=str(refusal)) from refusal
 
 
-def _shown(parts: Parts, proof: Proof) -> tuple[OrderView, PlanView]:
+def proof_shown(parts: Parts, proof: Proof) -> tuple[OrderView, PlanView]:
+    """The order and the plan of a proof.
+
+    Raises:
+        OrderUnknownError: They were deleted.
+    """
     with parts.store.reading() as session:
         order = session.get(Order, proof.order_id)
         plan = plan_view(session, proof.order_id, proof.revision)
@@ -109,5 +130,6 @@ def _shown(parts: Parts, proof: Proof) -> tuple[OrderView, PlanView]:
         return order_view(session, order), plan
 
 
-def _waits(order: OrderView, proof: Proof) -> bool:
+def waits_for_decision(order: OrderView, proof: Proof) -> bool:
+    """Whether the customer's word about this proof is still waited for."""
     return order.state in (State.READY, State.ATTENTION) and order.plan_revision == proof.revision

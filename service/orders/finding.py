@@ -8,6 +8,7 @@ from sqlalchemy.orm import Session
 
 from service.access.asker import Asker
 from service.orders.faults import OrderUnknownError
+from service.orders.states import EventType
 from service.orders.views import EventView, OrderView, event_views, order_view
 from service.store.tables import Event, Order
 
@@ -69,11 +70,12 @@ def find_order(session: Session, asker: Asker, order_id: str) -> OrderView:
 
 
 def list_orders(
-    session: Session, asker: Asker, sought: Sought, *, after: Place | None, most: int
+    session: Session, asker: Asker, sought: Sought, *, after: Place | None, most: int, newest_first: bool = False
 ) -> tuple[tuple[OrderView, ...], Place | None]:
     """A page of orders, by the moment of their last change and then by id, oldest first.
 
-    An order that changes while pages are read comes again on a later page: none is missed.
+    An order that changes while pages are read comes again on a later page: none is missed. Newest first, as people
+    read, such an order is on a page that was read already.
 
     Returns:
         The orders, and where the next page begins; None where this was the last.
@@ -87,8 +89,10 @@ def list_orders(
     if sought.updated_since is not None:
         rows = rows.where(Order.updated_at >= sought.updated_since)
     if after is not None:
-        rows = rows.where(tuple_(Order.updated_at, Order.id) > (after.updated_at, after.order_id))
-    found = list(session.scalars(rows.order_by(Order.updated_at, Order.id).limit(most + 1)))
+        place, stood = tuple_(Order.updated_at, Order.id), (after.updated_at, after.order_id)
+        rows = rows.where(place < stood if newest_first else place > stood)
+    by = (Order.updated_at, Order.id)
+    found = list(session.scalars(rows.order_by(*(one.desc() if newest_first else one for one in by)).limit(most + 1)))
     page = found[:most]
     more = Place(updated_at=page[-1].updated_at, order_id=page[-1].id) if len(found) > most else None
     return tuple(order_view(session, order) for order in page), more
@@ -103,6 +107,13 @@ def events_of(session: Session, asker: Asker, order_id: str, *, after: int, most
     order = order_row(session, asker, order_id)
     past = select(Event).where(Event.order_id == order.id, Event.seq > after).order_by(Event.seq).limit(most)
     return event_views(session.scalars(past).all())
+
+
+def verdicts_on(session: Session, order_id: str, revision: int) -> tuple[EventView, ...]:
+    """What customers said of a plan of an order, oldest first."""
+    said = select(Event).where(Event.order_id == order_id, Event.type.in_((EventType.ACCEPTED, EventType.DECLINED)))
+    views = event_views(session.scalars(said.order_by(Event.seq)).all())
+    return tuple(view for view in views if view.data.get("revision") == revision)
 
 
 def events_after(session: Session, asker: Asker, *, after: int, most: int, test: bool) -> tuple[EventView, ...]:

@@ -2,6 +2,9 @@
 
 import json
 import re
+from collections.abc import Mapping
+from types import MappingProxyType
+from typing import Any
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
@@ -51,18 +54,26 @@ def disc_routes(desk: LayoutDesk) -> Blueprint:
     return routes
 
 
-def disc_page(asked: Request, shown: ShownDisc) -> Response:
+def disc_page(
+    asked: Request,
+    shown: ShownDisc,
+    *,
+    template: str = "disc.html",
+    beside: Mapping[str, Any] = MappingProxyType({}),
+) -> Response:
     """The page of a disc, wherever it comes from.
 
     Args:
         asked: The request.
         shown: The disc.
+        template: One that extends that of the page.
+        beside: What such a template shows beside the disc.
     """
     movement = shown.movement
     return page(
         asked,
-        "disc.html",
-        scripts=("disc",),
+        template,
+        scripts=("disc", "rulings"),
         shown=shown,
         data=disc_data(shown),
         verdict=verdict_of(shown),
@@ -73,6 +84,7 @@ def disc_page(asked: Request, shown: ShownDisc) -> Response:
         findings=findings_of(shown.layout),
         cautions=cautions_of(shown),
         plots=plots_of(shown.report, before_music_deg=movement.before_music_deg, revolution_s=movement.revolution_s),
+        **beside,
     )
 
 
@@ -92,4 +104,5 @@ def _shown(kept: KeptLayout, reason: str | None) -> ShownDisc:
         hearing={of: f"{base}/hearing.wav?of={of}" for of in ("disc", "written")},
         despite_findings=given_despite,
         asks_reason=not kept.good_to_cut,
+        rulings_at=f"{base}/again",
     )

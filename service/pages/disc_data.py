@@ -20,6 +20,7 @@ OF_A_PROJECTION = ("track", "angle_deg", "asked_s", "sounds_s", "octave_semitone
 OF_A_FINDING = ("code", "level", "at")
 OF_A_LAYOUT = (
     "title",
+    "disc",
     "fingerprint",
     "good_to_cut",
     "revolution_s",
@@ -27,6 +28,7 @@ OF_A_LAYOUT = (
     "transposed_semitones",
     "speed_factor",
     "from_s",
+    "worth",
     "bars",
     "left_out",
 )

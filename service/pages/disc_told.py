@@ -132,7 +132,12 @@ def findings_of(layout: Record) -> tuple[tuple[str, tuple[FindingTold, ...]], ..
 
 def cautions_of(shown: ShownDisc) -> tuple[tuple[str, str], ...]:
     """The cautions for the disc's cutter: each a name and what to do."""
-    names = CAUTIONS[shown.cutter.kind]
+    return cautions_for(shown.cutter.kind)
+
+
+def cautions_for(cutter_kind: str) -> tuple[tuple[str, str], ...]:
+    """The cautions where such a cutter cuts: each a name and what to do."""
+    names = CAUTIONS[cutter_kind]
     return tuple((text_of(f"disc.caution_{name}"), text_of(f"disc.caution_{name}_do")) for name in names)
 
 

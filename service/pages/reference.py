@@ -126,7 +126,10 @@ def _bodies(told: Document | None) -> list[Document]:
             "is_needed": told["required"],
             "kind": kind_of(content["schema"]),
             "fields": rows_of(content["schema"])["fields"],
-            "examples": [_shown(example["value"]) for example in content.get("examples", {}).values()],
+            # One body may be sent with several queries: it is shown once.
+            "examples": list(
+                dict.fromkeys(_shown(example["value"]) for example in content.get("examples", {}).values())
+            ),
         }
         for media_type, content in told["content"].items()
     ]

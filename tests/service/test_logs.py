@@ -88,6 +88,7 @@ def test_lines_for_people_end_with_what_they_are_about(root: logging.Logger) -> 
         ("Cookie: discwright=abc; other=1", "Cookie: …"),
         ("GET '/sign-in/sloKOaf2M7Aiy' failed", "GET '/sign-in/…' failed"),
         ("GET '/v1/proofs/abc.def/files/1/disc.svg' failed", "GET '/v1/proofs/…/files/1/disc.svg' failed"),
+        ("GET '/proof/abc.def' failed", "GET '/proof/…' failed"),
         ("redis://:geheim@queue:6379/0 is away", "redis://…@queue:6379/0 is away"),
         ("Error handling request /v1/orders?token=abc", "Error handling request /v1/orders?…"),
         ("host=db password=geheim user=shop", "host=db … user=shop"),

@@ -127,6 +127,46 @@ FILE = Operation(
     problems=("layout-unknown", "not-good-to-cut"),
     examples=(Example(status=200, given="a layout", path={"file_name": "disc.svg"}),),
 )
+SETTINGS = Operation(
+    id="tell_layout_settings",
+    tag="layouts",
+    summary="The settings a layout was made with",
+    description="What is left out has its default.",
+    headers=(IF_NONE_MATCH,),
+    answers=(
+        Answer(status=200, meaning="The settings.", contents={JSON_MEDIA_TYPE: FileRecord}, headers=(ETAG, SAVED_AS)),
+        NOT_MODIFIED,
+    ),
+    problems=("layout-unknown",),
+    examples=(Example(status=200, given="a layout"),),
+)
+AGAIN = Operation(
+    id="make_layout_again",
+    tag="layouts",
+    summary="Lay a kept layout out again with other settings",
+    description="Tune, movement and cutter stay as they are kept. The settings are the whole document, rulings by "
+    "hand among them: the best arrangement is found again around these.",
+    query=DespiteQuery,
+    headers=(CSRF_TOKEN,),
+    bodies=(Body(media_type=JSON_MEDIA_TYPE, model=Settings),),
+    answers=(
+        Answer(
+            status=201,
+            meaning="The layout, or one for each disc.",
+            contents={JSON_MEDIA_TYPE: MadeAnswer},
+            headers=(ETAG, LOCATION, ITEMS),
+        ),
+    ),
+    problems=("layout-unknown", "document-invalid", "rulings-contradict", "midi-unreadable"),
+    examples=(
+        Example(
+            status=201,
+            given="a layout",
+            media_type=JSON_MEDIA_TYPE,
+            body={"rulings": [{"note": 0, "do": "leave-out"}]},
+        ),
+    ),
+)
 TRIAL_PIECE = Operation(
     id="make_trial_piece",
     tag="trial pieces",

@@ -200,6 +200,7 @@ PROOF_LINK = Operation(
     id="make_proof_link",
     tag=TAG,
     summary="A signed link by which a customer sees the order and decides",
+    description="It leads people to a page, and who asks for JSON to the same at /v1/proofs.",
     headers=(CSRF_TOKEN,),
     answers=(told(ProofLinkAnswer, "The link.", status=201),),
     problems=("order-unknown", "state-forbids"),

@@ -25,6 +25,16 @@ class OfLayouts(Group):
         path = place("/v1/layouts/{fingerprint}/{file_name}", {"fingerprint": fingerprint, "file_name": file_name})
         return self._caller.send("GET", path, query=query)
 
+    def make_layout_again(
+        self,
+        fingerprint: str,
+        body: dict[str, Any],
+        query: Query | None = None,
+    ) -> shapes.MadeAnswer:
+        """Lay a kept layout out again with other settings."""
+        path = place("/v1/layouts/{fingerprint}/again", {"fingerprint": fingerprint})
+        return cast("shapes.MadeAnswer", self._caller.json("POST", path, body=body, query=query))
+
     def tell_layout_plucks(self, fingerprint: str, query: Query | None = None) -> Answer:
         """What a layout plays, as MIDI."""
         path = place("/v1/layouts/{fingerprint}/hearing.mid", {"fingerprint": fingerprint})
@@ -34,3 +44,8 @@ class OfLayouts(Group):
         """A layout as it sounds."""
         path = place("/v1/layouts/{fingerprint}/hearing.wav", {"fingerprint": fingerprint})
         return self._caller.send("GET", path, query=query)
+
+    def tell_layout_settings(self, fingerprint: str) -> shapes.FileRecord:
+        """The settings a layout was made with."""
+        path = place("/v1/layouts/{fingerprint}/settings.json", {"fingerprint": fingerprint})
+        return cast("shapes.FileRecord", self._caller.json("GET", path))

@@ -21,6 +21,7 @@ from tests.layout.arrange.small_comb import (
     spacing_for,
 )
 
+AS_WRITTEN = {"mode": "fixed", "semitones": 0}
 C4_TWICE: list[Note] = [(0.0, "C4", 127), (0.5, "C4", 1)]  # track 1 repeats after 1 s: only one can sound
 
 
@@ -74,6 +75,41 @@ def test_a_note_placed_by_hand_stays_on_its_track() -> None:
     arrangement = ruled([(0.0, "E4"), (2.0, "E4"), (4.0, "E4")], place(0, 3), place(1, 3))
 
     assert played(arrangement) == [(0.0, 3), (2.0, 3), (4.0, 4)]
+
+
+def test_a_note_placed_by_hand_in_another_octave_goes_there_though_no_others_may_be_moved() -> None:
+    notes: list[Note] = [(0.0, "E5"), (4.0, "G5"), (8.0, "E3")]
+
+    arrangement = ruled(notes, place(0, 4), place(2, 3), octave_moves="none", transpose=AS_WRITTEN)
+
+    assert played(arrangement) == [(0.0, 4), (8.0, 3)]
+    assert left_out(arrangement) == {1: "no-such-pitch"}
+    assert arrangement.octave_semitones.tolist() == [-12, 12]
+    assert arrangement.worth.kept == arrangement.worth.bound
+
+
+def test_a_note_placed_by_hand_in_another_octave_keeps_the_share_that_octave_moves_keep() -> None:
+    there = ruled([(0.0, "E4")], place(0, 4), octave_fit=0.6, transpose=AS_WRITTEN)
+    moved = ruled([(0.0, "E5")], place(0, 4), octave_fit=0.6, transpose=AS_WRITTEN)
+
+    # Alone and of one weight: 6 tenths, each rounded down to a whole grain.
+    assert moved.worth.kept == there.worth.kept * 600 // 1000
+
+
+def test_the_best_transposition_counts_what_a_ruling_moves_by_an_octave() -> None:
+    # As written both sound, E5 for 6 tenths; an octave lower E5 fits whole, and G4 has no tooth.
+    arrangement = ruled([(0.0, "E5", 127), (4.0, "G4", 1)], place(0, 4), transpose={"mode": "best", "range": 12})
+
+    assert arrangement.transposed_semitones == 0
+    assert played(arrangement) == [(0.0, 4), (4.0, 5)]
+
+
+def test_a_note_placed_on_a_track_of_another_pitch_is_refused_in_every_octave() -> None:
+    error = refusal([(0.0, "E5")], place(0, 5), transpose=AS_WRITTEN)
+
+    assert told(error) == [
+        ("/rulings/0", "transposed by +0: note 0 would be E5, which no usable tooth of the comb has")
+    ]
 
 
 def test_a_note_placed_by_hand_takes_the_room_of_a_heavier_one() -> None:

@@ -8,7 +8,7 @@ import pytest
 from layout.arrange import arrange
 from layout.arrange.budget import Budget
 from layout.arrange.comb import comb_of
-from layout.arrange.plucks import Wanted
+from layout.arrange.plucks import NO_TRACK, Wanted
 from layout.arrange.posing import Rules, most_kept, pose, rules_of
 from layout.arrange.problem import Beside, Problem
 from layout.arrange.searching import Found, Way, search
@@ -108,6 +108,14 @@ def test_the_transpositions_told_are_the_best_five_with_what_they_keep() -> None
         assert fixed.worth.kept == kept
     keeps = [one.kept or 0 for one in arrangement.tried]
     assert keeps == sorted(keeps, reverse=True)
+
+
+def test_a_pluck_that_a_ruling_puts_into_another_octave_counts_among_what_a_transposition_may_keep() -> None:
+    free = plucks(["C4", "E6", "A4"])
+    ruled = replace(free, on_track=frozen_ints([NO_TRACK, 3, NO_TRACK]))  # E6 on the track of E4
+
+    # C4 alone has a tooth; A4's cannot be used.
+    assert (most_kept(free, 0, small_rules()), most_kept(ruled, 0, small_rules())) == (1000, 2000)
 
 
 def test_a_hopeless_transposition_is_left_half_way() -> None:

@@ -25,12 +25,12 @@ def link(shop: Shop, host: str) -> str:
 
 @pytest.mark.parametrize("host", ["evil.example", "evil.example:8000", "10.0.0.1", "localhost.evil.example", "[::2]"])
 def test_a_host_that_anyone_may_have_written_stands_in_no_link(shop: Shop, host: str) -> None:
-    assert link(shop, host).startswith("/v1/proofs/")
+    assert link(shop, host).startswith("/proof/")
 
 
 @pytest.mark.parametrize("host", ["localhost:8000", "127.0.0.1:8000", "[::1]:8000", "shop.localhost"])
 def test_a_link_for_this_machine_names_it(shop: Shop, host: str) -> None:
-    assert link(shop, host).startswith(f"http://{host}/v1/proofs/")
+    assert link(shop, host).startswith(f"http://{host}/proof/")
 
 
 @pytest.mark.parametrize("public_url", ["https://discs.example.com", "https://discs.example.com/"])
@@ -38,7 +38,7 @@ def test_where_it_is_said_how_the_service_is_reached_every_link_leads_there(part
     places = replace(parts.settings.places, public_url=public_url)
     with closing(Shop(replace(parts, settings=replace(parts.settings, places=places)))) as shop:
         for host in ("evil.example", "localhost:8000"):
-            assert link(shop, host).startswith("https://discs.example.com/v1/proofs/")
+            assert link(shop, host).startswith("https://discs.example.com/proof/")
 
 
 def test_a_link_that_is_a_path_leads_to_the_proof(shop: Shop) -> None:

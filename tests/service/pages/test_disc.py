@@ -82,6 +82,7 @@ def test_a_disc_says_that_it_is_good_to_cut_and_every_file_it_links_to_is_there(
     assert "Good to cut. Nothing was found against it." in answer.text
     files = [link for link in _links_in(answer.text) if link.startswith("/v1/layouts/")]
     assert [link.rsplit("/", 1)[1] for link in files] == [
+        "settings.json",
         *("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "work-sheet.pdf", "layout.json", "report.json"),
         "making.json",
     ]

@@ -120,3 +120,10 @@ def test_a_schema_is_told_in_words_with_its_bounds() -> None:
         'list of <a href="#shape-Ruling">Ruling</a>'
     )
     assert kind_of({"enum": ["none", "all"]}) == "<code>&#34;none&#34;</code> or <code>&#34;all&#34;</code>"
+
+
+def test_a_body_that_is_sent_with_several_queries_is_shown_once(shown: Shown) -> None:
+    layout = shown.words.partition("POST /v1/layouts")[2].partition("GET /v1/layouts/{fingerprint}")[0]
+
+    assert "audio/midi: bytes" in layout
+    assert layout.count("TVRoZ") == 2  # raw, and as a part of the form

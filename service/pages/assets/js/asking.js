@@ -10,7 +10,8 @@ export class Problem extends Error {
 
 let token = null;
 
-async function tokenOfThisBrowser() {
+export async function tokenOfThisBrowser() {
+  if (document.getElementById("sign-out") === null) return ""; // nobody is signed in here
   if (token === null) {
     const answer = await fetch("/v1/keys/me", { headers: { Accept: "application/json" } });
     token = answer.ok ? (await answer.json()).csrf_token || "" : "";
@@ -19,9 +20,10 @@ async function tokenOfThisBrowser() {
 }
 
 // Gives { status, headers, value }; value is JSON where the answer is. Raises Problem in the API's words.
-export async function ask(method, path, { json, form, body, headers = {} } = {}) {
+// `open` is for routes that look at no key: they want no token.
+export async function ask(method, path, { json, form, body, headers = {}, open = false } = {}) {
   const head = { Accept: "application/json", ...headers };
-  if (method !== "GET") {
+  if (method !== "GET" && !open) {
     const own = await tokenOfThisBrowser();
     if (own) head["X-CSRF-Token"] = own;
   }

@@ -11,6 +11,7 @@ import { Pointing } from "./pointing.js";
 import { openState } from "./state.js";
 import { turningOf } from "./turning.js";
 import { View } from "./view.js";
+import { openRulings } from "../rulings/rulings.js";
 
 export function openDisc(data) {
   const stage = find("#stage");
@@ -34,4 +35,5 @@ export function openDisc(data) {
   return { state, drawn, view, chart, playing, pointing };
 }
 
-openDisc(pageData("disc-data"));
+const data = pageData("disc-data");
+openRulings(openDisc(data), data);

@@ -1,0 +1,317 @@
+"""What the pages of orders say in words: states and what comes next, facts, plans, files, what happened."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from typing import Any
+
+from service.access.asker import Asker
+from service.access.scopes import Scope
+from service.orders.states import State
+from service.orders.views import EventView, OrderView, PlanView
+from service.pages.disc_told import counted
+from service.pages.texts import text_of, texts
+
+MINUTE_S, HOUR_S = 60, 3600
+# How a state looks: what waits for a person stands out.
+LOOKS = {
+    State.ATTENTION: "warn",
+    State.READY: "good",
+    State.RELEASED: "good",
+    State.FAILED: "bad",
+    State.CANCELLED: "quiet",
+}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Moment:
+    """A moment: for programs, and for people in UTC."""
+
+    for_programs: str
+    for_people: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Listed:
+    """An order in the list: its address, what it is called, its state in words and how that looks."""
+
+    address: str
+    name: str
+    tune: str
+    state: str
+    look: str
+    movement: str
+    updated: Moment
+    is_test: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DiscTold:
+    """A disc of the plan in force: its page, its picture, what is kept and found, what it costs."""
+
+    number: int
+    of: int
+    address: str
+    picture: str
+    good_to_cut: bool
+    lines: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FileOfPlan:
+    """A file of the plan in force: where it is (None before release), what it is, who wants it."""
+
+    name: str
+    address: str | None
+    saved_as: str
+    kilobytes: str
+    what: str
+    who: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PlanTold:
+    """A plan of the order: whether it is in force, and what was decided about it."""
+
+    revision: int
+    made: Moment
+    standing: str
+    is_superseded: bool
+    lost: str
+    lines: tuple[str, ...]
+    discs: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class EventTold:
+    """What happened: when, in words, by whom, and what was said with it."""
+
+    seq: int
+    at: Moment
+    what: str
+    lines: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Decisions:
+    """What the page offers to whom asks; `missing` names what a key with more scopes would be offered."""
+
+    release: bool
+    reason_wanted: bool
+    replan: bool
+    cancel: bool
+    recall: bool
+    link: bool
+    report: bool
+    missing: tuple[str, ...]
+
+
+def moment(at: datetime) -> Moment:
+    """A moment in words, in UTC to the minute."""
+    utc = at.astimezone(UTC)
+    return Moment(for_programs=utc.isoformat(timespec="seconds"), for_people=utc.strftime("%Y-%m-%d %H:%M UTC"))
+
+
+def state_words(state: str) -> str:
+    """A state in a few words."""
+    return text_of(f"orders.state_{state}")
+
+
+def name_of(order: OrderView) -> str:
+    """What an order is called: by its reference, else its tune, else its id."""
+    return order.reference or order.tune_name or order.id
+
+
+def listed(order: OrderView) -> Listed:
+    """An order as the list shows it."""
+    return Listed(
+        address=f"/orders/{order.id}",
+        name=name_of(order),
+        tune=order.tune_name or text_of("orders.tune_unnamed"),
+        state=state_words(order.state),
+        look=LOOKS.get(State(order.state), ""),
+        movement=order.movement_id,
+        updated=moment(order.updated_at),
+        is_test=order.is_test,
+    )
+
+
+def next_of(order: OrderView) -> str:
+    """What happens next with an order, and who has to do something."""
+    if order.erased_at is not None:
+        return text_of("orders.next_erased")
+    if order.state == State.RECEIVED and order.plan is not None:
+        return text_of("orders.next_received_anew")
+    return text_of(f"orders.next_{order.state}")
+
+
+def decisions_of(order: OrderView, asker: Asker) -> Decisions:
+    """What may be decided about an order by who asks."""
+    state = State(order.state)
+    is_there = order.erased_at is None
+    waits = is_there and state in (State.READY, State.ATTENTION)
+    orders, releases = Scope.ORDER in asker.scopes, Scope.RELEASE in asker.scopes
+    is_released = is_there and state is State.RELEASED
+    needs_release = waits or is_released
+    return Decisions(
+        release=waits and releases,
+        reason_wanted=state is State.ATTENTION,
+        replan=is_there and orders and bool(order.tune_digest) and (needs_release or state is State.FAILED),
+        cancel=is_there and orders and (state is not State.CANCELLED) and not is_released,
+        recall=is_released and orders and asker.sees_all_owners,
+        link=waits and orders,
+        report=is_released and releases,
+        missing=(
+            *((text_of("orders.missing_release"),) if needs_release and not releases else ()),
+            *((text_of("orders.missing_order"),) if is_there and not orders and state is not State.CANCELLED else ()),
+        ),
+    )
+
+
+def facts_of(order: OrderView) -> tuple[tuple[str, str], ...]:
+    """The facts of an order: each a name and a value."""
+    facts = {
+        "reference": order.reference,
+        "tune": order.tune_name,
+        "movement": text_of("orders.fact_movement_value", id=order.movement_id, revision=order.movement_revision),
+        "cutter": order.cutter_id,
+        "quantity": counted("orders.fact_quantity_value", order.quantity),
+        "most_lost": text_of("orders.fact_most_lost_value", share=percent(order.most_lost_share)),
+        "release": text_of("orders.fact_release_alone") if order.release_alone else None,
+        "repeat": order.repeat_of,
+        "run": order.run_id,
+        "hook": order.hook_id,
+        "quote": order.quote_id,
+        "created": moment(order.created_at).for_people,
+        "finished": None if order.finished_at is None else moment(order.finished_at).for_people,
+        "erased": None if order.erased_at is None else moment(order.erased_at).for_people,
+        "id": order.id,
+    }
+    return tuple((text_of(f"orders.fact_{name}"), value) for name, value in facts.items() if value)
+
+
+def discs_told(told: Mapping[str, Any], plan: PlanView | None) -> tuple[DiscTold, ...]:
+    """The discs of the plan in force; none before the first plan, and once the files are deleted.
+
+    Args:
+        told: The order, as the API tells it.
+        plan: Its plan.
+    """
+    if plan is None or not plan.files:
+        return ()
+    pictures = {file["disc"]: file["href"] for file in told["plan"]["files"] if file["name"] == "disc.svg"}
+    return tuple(
+        DiscTold(
+            number=disc["number"],
+            of=disc["of"],
+            address=f"/orders/{told['id']}/discs/{disc['number']}",
+            picture=pictures[disc["number"]],
+            good_to_cut=disc["good_to_cut"],
+            lines=tuple(_disc_lines(disc)),
+        )
+        for disc in plan.told["discs"]
+    )
+
+
+def files_told(told: Mapping[str, Any]) -> tuple[tuple[int, tuple[FileOfPlan, ...]], ...]:
+    """The files of the plan in force by disc, each with what it is and who wants it.
+
+    Args:
+        told: The order, as the API tells it.
+    """
+    files = [] if told["plan"] is None else told["plan"]["files"]
+    discs = dict.fromkeys(file["disc"] for file in files)
+    return tuple((disc, tuple(_file(file) for file in files if file["disc"] == disc)) for disc in discs)
+
+
+def plan_told(plan: PlanView, order: OrderView) -> PlanTold:
+    """A plan in words.
+
+    Args:
+        plan: Of the order's plans.
+        order: The order.
+    """
+    is_superseded = plan.superseded_at is not None
+    in_force = plan.revision == order.plan_revision
+    standing = "superseded" if is_superseded else "in_force" if in_force else "replaced"
+    lines = []
+    if plan.released_at is not None:
+        released = {"by": plan.released_by or text_of("orders.by_nobody"), "at": moment(plan.released_at).for_people}
+        lines.append(text_of("orders.plan_released", **released))
+    if plan.release_reason:
+        lines.append(text_of("orders.plan_reason", reason=plan.release_reason))
+    if plan.superseded_at is not None:
+        lines.append(text_of("orders.plan_superseded_at", at=moment(plan.superseded_at).for_people))
+    return PlanTold(
+        revision=plan.revision,
+        made=moment(plan.made_at),
+        standing=text_of(f"orders.plan_{standing}"),
+        is_superseded=is_superseded,
+        lost=percent(plan.lost_share),
+        lines=tuple(lines),
+        discs=tuple(disc["number"] for disc in plan.told["discs"]) if plan.files else (),
+    )
+
+
+def event_told(event: EventView) -> EventTold:
+    """An event in words: one of a type that has none is told by its type."""
+    key = f"orders.event_{event.type.removeprefix('order.')}"
+    what = text_of(key) if key in texts() else event.type
+    by = text_of("orders.event_by", by=event.by) if event.by else ""
+    return EventTold(seq=event.seq, at=moment(event.at), what=what + by, lines=tuple(_event_lines(event.data)))
+
+
+def percent(share: float) -> str:
+    """A share in hundredths."""
+    return f"{100 * share:.1f} %"
+
+
+def _disc_lines(disc: Mapping[str, Any]) -> list[str]:
+    lines = [text_of("orders.disc_kept", kept=disc["kept_count"], asked=disc["asked_count"])]
+    found = [counted(f"orders.disc_{level}", count) for level, count in disc["findings"].items() if count]
+    lines.append(", ".join(found) if found else text_of("orders.disc_nothing_found"))
+    if disc["time_s"] is not None:
+        lines.append(text_of("orders.disc_time", time=_time(disc["time_s"])))
+    if disc["price"] is not None:
+        lines.append(text_of("orders.disc_price", **disc["price"]))
+    return lines
+
+
+def _time(time_s: float) -> str:
+    if time_s < MINUTE_S:
+        return f"{time_s:.0f} s"
+    if time_s < HOUR_S:
+        return f"{time_s / MINUTE_S:.0f} min"
+    return f"{time_s / HOUR_S:.1f} h"
+
+
+def _file(file: Mapping[str, Any]) -> FileOfPlan:
+    key = f"disc.file_{file['name'].replace('-', '_').replace('.', '_')}"
+    return FileOfPlan(
+        name=file["name"],
+        address=file["href"],
+        saved_as=file["saved_as"],
+        kilobytes=text_of("orders.file_size", kilobytes=f"{file['byte_count'] / 1000:.1f}"),
+        what=text_of(key),
+        who=text_of(f"{key}_who"),
+    )
+
+
+def _event_lines(data: Mapping[str, Any]) -> list[str]:
+    """What an event tells beside; what is not known is left to programs."""
+    lines = []
+    if data.get("revision") is not None:
+        lines.append(text_of("orders.event_revision", revision=data["revision"]))
+    for name in ("reason", "despite_findings", "note"):
+        if data.get(name):
+            lines.append(text_of(f"orders.event_{name}", words=data[name]))
+    if data.get("recalled"):
+        lines.append(text_of("orders.event_recalled"))
+    if data.get("repeat_of"):
+        lines.append(text_of("orders.event_repeat_of", id=data["repeat_of"]))
+    if data.get("count") is not None:
+        lines.append(counted("orders.event_count", data["count"]))
+    measures = data.get("measures") or {}
+    if measures:
+        lines.append("; ".join(f"{name} {value:g}" for name, value in measures.items()))
+    return lines

@@ -1,0 +1,122 @@
+"""The page on which a disc is begun: every setting has its field, with the default of the settings themselves."""
+
+from collections.abc import Iterator
+from html.parser import HTMLParser
+from typing import Any
+
+import pytest
+from flask.testing import FlaskClient
+from pydantic import BaseModel
+
+from layout.documents import Settings
+from service.app import create_app
+from service.parts import Parts
+from service.settings import AccessSettings, ServiceSettings
+
+HTML = {"Accept": "text/html"}
+NO_FIELD = {"format", "rulings"}  # rulings are made on the disc
+
+
+class Fields(HTMLParser):
+    """The fields of a page by name, the labels by what they are for, and every id."""
+
+    def __init__(self, text: str) -> None:
+        super().__init__()
+        self.fields: dict[str, dict[str, str | None]] = {}
+        self.options: dict[str, list[str | None]] = {}
+        self.labelled: set[str | None] = set()
+        self.ids: set[str | None] = set()
+        self._select = ""
+        self.feed(text)
+
+    def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
+        told = dict(attrs)
+        self.ids.add(told.get("id"))
+        if tag == "label":
+            self.labelled.add(told.get("for"))
+        if tag in ("input", "select"):
+            self._select = str(told.get("name") or told.get("id"))
+            self.fields[self._select] = told
+        if tag == "option":
+            self.options.setdefault(self._select, []).append(told.get("value"))
+
+
+@pytest.fixture
+def shown(parts: Parts) -> Iterator[Fields]:
+    settings = ServiceSettings(places=parts.settings.places, access=AccessSettings(listens_on_loopback=True))
+    client: FlaskClient
+    with create_app(settings).test_client() as client:
+        answer = client.get("/new", headers=HTML)
+        assert answer.status_code == 200
+        yield Fields(answer.text)
+
+
+def leaves(model: type[BaseModel], before: str = "") -> Iterator[tuple[str, object]]:
+    """Every setting by the path of its names, with its default."""
+    for name, field in model.model_fields.items():
+        default = field.get_default(call_default_factory=True)
+        if isinstance(default, BaseModel):
+            yield from leaves(type(default), f"{before}{name}.")
+        elif before + name not in NO_FIELD:
+            yield before + name, default
+
+
+def test_every_setting_but_rulings_has_a_field_with_the_default_of_the_settings(shown: Fields) -> None:
+    settings = dict(leaves(Settings))
+    of_settings = {name: field for name, field in shown.fields.items() if "data-kind" in field}
+
+    assert of_settings.keys() == settings.keys()
+    for name, default in settings.items():
+        begun = of_settings[name]["data-default"]
+        if default is None or default == ():
+            assert begun == "", name
+        elif isinstance(default, str):
+            assert begun == default, name
+        else:
+            assert float(str(begun)) == default, name
+
+
+def test_every_value_of_a_choice_is_one_that_the_settings_take_and_none_is_missing(shown: Fields) -> None:
+    schema = Settings.model_json_schema()
+    of_settings = {name for name, field in shown.fields.items() if field.get("data-kind") == "choice"}
+
+    for name in of_settings:
+        *inside, last = name.split(".")
+        part = schema if not inside else schema["$defs"][schema["properties"][inside[0]]["$ref"].split("/")[-1]]
+        assert shown.options[name] == part["properties"][last]["enum"], name
+
+
+def test_the_bounds_of_a_number_are_those_that_the_schema_of_settings_tells(shown: Fields) -> None:
+    told = {name: schema for name, schema in numbers(Settings.model_json_schema())}
+
+    seen = 0
+    for name, field in shown.fields.items():
+        if field.get("data-kind") == "number":
+            for bound, key in (("min", "minimum"), ("max", "maximum")):
+                if key in told[name]:
+                    seen += 1
+                    assert float(str(field[bound])) == told[name][key], name
+    assert seen > 10
+
+
+def numbers(schema: dict[str, Any]) -> Iterator[tuple[str, dict[str, Any]]]:
+    """Every number of a schema of settings by the path of its names, one or two long."""
+    for name, inner in schema["properties"].items():
+        if "$ref" in inner:
+            part = schema["$defs"][inner["$ref"].split("/")[-1]]
+            yield from ((f"{name}.{last}", one) for last, one in numbers({**part, "$defs": {}}))
+        for one in (inner, *inner.get("anyOf", ())):
+            if one.get("type") in ("number", "integer"):
+                yield name, one
+
+
+def test_every_field_has_a_label_and_a_place_for_its_fault(shown: Fields) -> None:
+    for name, field in shown.fields.items():
+        assert field["id"] in shown.labelled, name
+        if name != "settings-file":
+            assert f"{field['id']}-fault" in shown.ids, name
+
+
+def test_what_ships_can_be_chosen_and_the_default_cutter_comes_first(shown: Fields) -> None:
+    assert shown.options["movement"] == ["fernhollow-31", "mossbrook-67", "tarnlight-17"]
+    assert shown.options["cutter"][0] == "fibre-laser"
