@@ -45,4 +45,4 @@ def test_a_link_that_is_a_path_leads_to_the_proof(shop: Shop) -> None:
     shown = shop.http.get(link(shop, "evil.example"))
 
     assert shown.status_code == 200
-    assert shown.json["reference"] == "W-1001"  # type: ignore[index]  # an answer in JSON
+    assert "W-1001" in shown.text
