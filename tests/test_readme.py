@@ -184,7 +184,7 @@ def test_the_command_lines_of_the_readme_work_in_their_order(tmp_path: Path) -> 
 
 def test_the_readme_has_examples_to_run() -> None:
     assert len(CURL) == 11
-    assert len(COMMANDS) == 17
+    assert len(COMMANDS) == 18
 
 
 def test_every_kind_of_error_stands_in_the_readme_with_its_status() -> None:

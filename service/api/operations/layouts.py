@@ -134,7 +134,7 @@ SETTINGS = Operation(
     description="What is left out has its default.",
     headers=(IF_NONE_MATCH,),
     answers=(
-        Answer(status=200, meaning="The settings.", contents={JSON_MEDIA_TYPE: FileRecord}, headers=(ETAG, SAVED_AS)),
+        Answer(status=200, meaning="The settings.", contents={JSON_MEDIA_TYPE: Settings}, headers=(ETAG, SAVED_AS)),
         NOT_MODIFIED,
     ),
     problems=("layout-unknown",),

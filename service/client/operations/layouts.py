@@ -45,7 +45,7 @@ class OfLayouts(Group):
         path = place("/v1/layouts/{fingerprint}/hearing.wav", {"fingerprint": fingerprint})
         return self._caller.send("GET", path, query=query)
 
-    def tell_layout_settings(self, fingerprint: str) -> shapes.FileRecord:
+    def tell_layout_settings(self, fingerprint: str) -> dict[str, Any]:
         """The settings a layout was made with."""
         path = place("/v1/layouts/{fingerprint}/settings.json", {"fingerprint": fingerprint})
-        return cast("shapes.FileRecord", self._caller.json("GET", path))
+        return cast("dict[str, Any]", self._caller.json("GET", path))
