@@ -45,12 +45,14 @@ class FilesTold:
     Attributes:
         standing: Whether they may be cut from, in a sentence.
         is_given: Whether cutting files are.
+        may_be_cut: Whether they are, or may still be.
         kept_back: What stands where a cutting file is not given.
         by_disc: The files of each disc, in the order of `layout.file_names.FILES`.
     """
 
     standing: str
     is_given: bool
+    may_be_cut: bool
     kept_back: str
     by_disc: tuple[tuple[int, tuple[FileOfPlan, ...]], ...]
 
@@ -98,6 +100,7 @@ def files_told(order: OrderView, told: Mapping[str, Any]) -> FilesTold | None:
     return FilesTold(
         standing=text_of(f"orders.files_{standing}"),
         is_given=is_given,
+        may_be_cut=standing not in ("superseded", "cancelled"),
         kept_back=text_of("orders.file_after_release" if standing == "before" else "orders.file_not_to_cut"),
         by_disc=tuple(
             (disc, tuple(_file(file, is_given=is_given) for file in files if file["disc"] == disc)) for disc in discs

@@ -202,6 +202,7 @@ def test_a_release_says_which_plan_and_version_was_seen_and_gives_the_cutting_fi
     assert form.attributes.get("data-plan") == shop.seen(order_id)["plan"].get("tag")
     page = order_seen(shop, order_id)
     assert page.one("strong", id="state").text == "Released"
+    assert "Good to cut" in part(page, "discs").text
     assert {"disc.dxf", "hits.csv"} <= file_links(page).keys()
     assert "these files are the ones to cut from" in part(page, "files").text
     assert "Released by A. Maker" in part(page, "plans").text
@@ -236,6 +237,7 @@ def test_a_plan_that_is_superseded_is_marked_and_nothing_of_it_is_called_fit_to_
     page = order_seen(shop, order_id)
 
     assert "Nothing of it may be cut any more" in part(page, "files").text
+    assert "Good to cut" not in part(page, "discs").text
     assert not file_links(page).keys() & set(CUTTING_FILES)
     assert page.one("li", class_="superseded").text.startswith("Plan 1 superseded: not to be cut any more")
     planned(shop.parts, order_id)
@@ -263,6 +265,7 @@ def test_an_order_that_was_called_back_calls_nothing_fit_to_cut(shop: Shop) -> N
 
     assert part(page, "standing").text.endswith("Nothing more is done with it. Nothing of it may be cut.")
     assert "Nothing of it may be cut." in part(page, "files").text
+    assert "Good to cut" not in part(page, "discs").text
     assert not file_links(page).keys() & set(CUTTING_FILES)
     assert "Because: a wrong tune Its files were called back" in part(page, "events").text
     assert forms(page) == []
