@@ -17,14 +17,14 @@ from service.orders.states import EventType, State
 from service.orders.views import EventView, OrderView, PlanView, plan_view
 from service.pages.disc import disc_page
 from service.pages.disc_told import cautions_for
-from service.pages.orders_discs import OrderDiscQuery, cutter_of, disc_of_plan, settings_text
+from service.pages.orders_discs import OrderDiscQuery, cutter_of, disc_of_plan, layouts_of, settings_text
+from service.pages.orders_files import discs_told, files_told
 from service.pages.orders_told import (
     decisions_of,
-    discs_told,
     event_told,
     facts_of,
-    files_told,
     listed,
+    name_of,
     next_of,
     plan_told,
     state_words,
@@ -114,13 +114,14 @@ def _order_page(parts: Parts, asker: Asker, order_id: str, asked: Request) -> Re
         "order.html",
         scripts=("orders",),
         order=order,
+        name=name_of(order),
         told=told,
         state=state_words(order.state),
         next=next_of(order),
         decisions=decisions_of(order, asker),
         facts=facts_of(order),
-        discs=discs_told(told, plan),
-        files=files_told(told),
+        discs=discs_told(order, told, layouts_of(parts, plan)),
+        files=files_told(order, told),
         plans=[plan_told(one, order) for one in plans],
         events=[event_told(event) for event in events],
         cautions=() if cutter is None else cautions_for(cutter.kind),

@@ -11,7 +11,7 @@ from service.api.models.orders import MOST_REVISION
 from service.api.order_answers import file_address
 from service.api.order_files import file_of
 from service.orders.views import PlanView
-from service.pages.disc_shown import ShownDisc
+from service.pages.disc_shown import Record, ShownDisc
 from service.parts import Parts
 
 
@@ -53,6 +53,16 @@ def disc_of_plan(parts: Parts, order_id: str, plan: PlanView, disc: int) -> Show
         hearing={of: f"{base}?of={of}" for of in ("disc", "written")},
         despite_findings=None if layout["good_to_cut"] else plan.release_reason,
     )
+
+
+def layouts_of(parts: Parts, plan: PlanView | None) -> dict[int, Record]:
+    """The layout.json of each disc of a plan, by its number; none where the files were deleted.
+
+    Raises:
+        StoreError: A file cannot be read.
+    """
+    files = () if plan is None else plan.files
+    return {file.disc: json.loads(parts.files.read(file.sha256)) for file in files if file.name == "layout.json"}
 
 
 def cutter_of(parts: Parts, plan: PlanView) -> Cutter | None:

@@ -1,4 +1,4 @@
-"""What the pages of orders say in words: states and what comes next, facts, plans, files, what happened."""
+"""What the pages of orders say in words: states and what comes next, facts, plans, what happened."""
 
 from collections.abc import Mapping
 from dataclasses import dataclass
@@ -12,7 +12,6 @@ from service.orders.views import EventView, OrderView, PlanView
 from service.pages.disc_told import counted
 from service.pages.texts import text_of, texts
 
-MINUTE_S, HOUR_S = 60, 3600
 # How a state looks: what waits for a person stands out.
 LOOKS = {
     State.ATTENTION: "warn",
@@ -43,30 +42,6 @@ class Listed:
     movement: str
     updated: Moment
     is_test: bool
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class DiscTold:
-    """A disc of the plan in force: its page, its picture, what is kept and found, what it costs."""
-
-    number: int
-    of: int
-    address: str
-    picture: str
-    good_to_cut: bool
-    lines: tuple[str, ...]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class FileOfPlan:
-    """A file of the plan in force: where it is (None before release), what it is, who wants it."""
-
-    name: str
-    address: str | None
-    saved_as: str
-    kilobytes: str
-    what: str
-    who: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -118,8 +93,13 @@ def state_words(state: str) -> str:
 
 
 def name_of(order: OrderView) -> str:
-    """What an order is called: by its reference, else its tune, else its id."""
-    return order.reference or order.tune_name or order.id
+    """What an order is called: by its reference, else its tune, else the title its plan found in it, else its id."""
+    return order.reference or order.tune_name or title_of(order) or order.id
+
+
+def title_of(order: OrderView) -> str:
+    """The tune's title as its plan found it; "" before the first plan."""
+    return "" if order.plan is None else str(order.plan.told.get("title") or "")
 
 
 def listed(order: OrderView) -> Listed:
@@ -127,7 +107,7 @@ def listed(order: OrderView) -> Listed:
     return Listed(
         address=f"/orders/{order.id}",
         name=name_of(order),
-        tune=order.tune_name or text_of("orders.tune_unnamed"),
+        tune=order.tune_name or title_of(order) or text_of("orders.tune_unnamed"),
         state=state_words(order.state),
         look=LOOKS.get(State(order.state), ""),
         movement=order.movement_id,
@@ -172,7 +152,7 @@ def facts_of(order: OrderView) -> tuple[tuple[str, str], ...]:
     """The facts of an order: each a name and a value."""
     facts = {
         "reference": order.reference,
-        "tune": order.tune_name,
+        "tune": order.tune_name or title_of(order),
         "movement": text_of("orders.fact_movement_value", id=order.movement_id, revision=order.movement_revision),
         "cutter": order.cutter_id,
         "quantity": counted("orders.fact_quantity_value", order.quantity),
@@ -188,40 +168,6 @@ def facts_of(order: OrderView) -> tuple[tuple[str, str], ...]:
         "id": order.id,
     }
     return tuple((text_of(f"orders.fact_{name}"), value) for name, value in facts.items() if value)
-
-
-def discs_told(told: Mapping[str, Any], plan: PlanView | None) -> tuple[DiscTold, ...]:
-    """The discs of the plan in force; none before the first plan, and once the files are deleted.
-
-    Args:
-        told: The order, as the API tells it.
-        plan: Its plan.
-    """
-    if plan is None or not plan.files:
-        return ()
-    pictures = {file["disc"]: file["href"] for file in told["plan"]["files"] if file["name"] == "disc.svg"}
-    return tuple(
-        DiscTold(
-            number=disc["number"],
-            of=disc["of"],
-            address=f"/orders/{told['id']}/discs/{disc['number']}",
-            picture=pictures[disc["number"]],
-            good_to_cut=disc["good_to_cut"],
-            lines=tuple(_disc_lines(disc)),
-        )
-        for disc in plan.told["discs"]
-    )
-
-
-def files_told(told: Mapping[str, Any]) -> tuple[tuple[int, tuple[FileOfPlan, ...]], ...]:
-    """The files of the plan in force by disc, each with what it is and who wants it.
-
-    Args:
-        told: The order, as the API tells it.
-    """
-    files = [] if told["plan"] is None else told["plan"]["files"]
-    discs = dict.fromkeys(file["disc"] for file in files)
-    return tuple((disc, tuple(_file(file) for file in files if file["disc"] == disc)) for disc in discs)
 
 
 def plan_told(plan: PlanView, order: OrderView) -> PlanTold:
@@ -264,37 +210,6 @@ def event_told(event: EventView) -> EventTold:
 def percent(share: float) -> str:
     """A share in hundredths."""
     return f"{100 * share:.1f} %"
-
-
-def _disc_lines(disc: Mapping[str, Any]) -> list[str]:
-    lines = [text_of("orders.disc_kept", kept=disc["kept_count"], asked=disc["asked_count"])]
-    found = [counted(f"orders.disc_{level}", count) for level, count in disc["findings"].items() if count]
-    lines.append(", ".join(found) if found else text_of("orders.disc_nothing_found"))
-    if disc["time_s"] is not None:
-        lines.append(text_of("orders.disc_time", time=_time(disc["time_s"])))
-    if disc["price"] is not None:
-        lines.append(text_of("orders.disc_price", **disc["price"]))
-    return lines
-
-
-def _time(time_s: float) -> str:
-    if time_s < MINUTE_S:
-        return f"{time_s:.0f} s"
-    if time_s < HOUR_S:
-        return f"{time_s / MINUTE_S:.0f} min"
-    return f"{time_s / HOUR_S:.1f} h"
-
-
-def _file(file: Mapping[str, Any]) -> FileOfPlan:
-    key = f"disc.file_{file['name'].replace('-', '_').replace('.', '_')}"
-    return FileOfPlan(
-        name=file["name"],
-        address=file["href"],
-        saved_as=file["saved_as"],
-        kilobytes=text_of("orders.file_size", kilobytes=f"{file['byte_count'] / 1000:.1f}"),
-        what=text_of(key),
-        who=text_of(f"{key}_who"),
-    )
 
 
 def _event_lines(data: Mapping[str, Any]) -> list[str]:

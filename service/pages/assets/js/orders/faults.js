@@ -11,7 +11,10 @@ export function clearFaults(form) {
   find(".fault:not(.fault-of-field)", form).textContent = "";
 }
 
-function fieldOf(form, pointer) {
+// A fault of a document that the form brings whole is about the field that holds it.
+function fieldOf(form, document, pointer) {
+  const holder = document ? find(`[data-kind="json"][name="${CSS.escape(document)}"]`, form) : null;
+  if (holder !== null) return holder;
   const name = pointer.split("/")[1] ?? "";
   return name === "" ? null : find(`[name="${CSS.escape(name)}"]`, form);
 }
@@ -27,7 +30,7 @@ function mark(field, detail) {
 // The fault of a request in the API's words.
 export function showFault(form, fault) {
   const fields = (fault.told.invalid_params ?? [])
-    .map(({ pointer, detail }) => ({ field: fieldOf(form, pointer), detail }))
+    .map(({ pointer, detail }) => ({ field: fieldOf(form, fault.told.document, pointer), detail }))
     .filter(({ field }) => field !== null);
   for (const { field, detail } of fields) if (!field.hasAttribute("aria-invalid")) mark(field, detail);
   find(".fault:not(.fault-of-field)", form).textContent = fault.message;

@@ -46,6 +46,8 @@ async function fetched(wire) {
   for (const part of parts()) replace(part, find(`[data-part="${part.dataset.part}"]`, fresh));
   find("#order-data").textContent = find("#order-data", fresh).textContent;
   wire();
+  // A link that was made leads to what is decided about no more.
+  if (find('form[data-do="proof-links"]') === null) find("#made-link").hidden = true;
   const now = find("#state").textContent;
   if (now !== before) say(text("orders.now", { state: now, next: find("#next").textContent }));
 }

@@ -50,6 +50,7 @@ export function wireForm(form, address, done) {
       if (!(fault instanceof Problem)) throw fault;
       const isOld = /\/(order-changed|state-forbids)$/.test(fault.told.type ?? "");
       if (isOld) await done();
+      button.disabled = false;
       showFaultOf(form, fault);
     } finally {
       button.disabled = false;
