@@ -1,123 +1,106 @@
-// A disc is asked for: the form, what is under way, and where the result is.
-import { Problem } from "../asking.js";
-import { el, find, pageData, say } from "../dom.js";
+// The page on which a disc is begun: the file and the fields stay whatever the service says.
+import { el, find, say } from "../dom.js";
 import { text } from "../texts.js";
-import { Faults, faultsOf } from "./faults.js";
-import { GivenUp, send } from "./sending.js";
-import { saveAs, takeFrom, tellCarried } from "./settings_file.js";
-import { SettingsForm } from "./settings_form.js";
-import { showChosen, takeDrops, tuneFrom } from "./tune_choice.js";
+import { clear, tell } from "./faults.js";
+import { send } from "./sending.js";
+import { settingsOf, show } from "./settings_form.js";
 
-const form = find("#asking");
-const tune = find("#tune");
-const underWay = find("#under-way");
-const settings = new SettingsForm(form);
-const faults = new Faults(form, find("#summary"));
+const form = find("#new-disc");
+const input = find("#tune");
+const drop = find("#drop");
+let dropped = null; // a file that was dropped; the input keeps one that was chosen
+let kept = {}; // what a settings file says that the page has no field for
 
-function setStage(words) {
-  find("#stage").textContent = words;
-  say(words);
+const tune = () => dropped ?? input.files[0] ?? null;
+
+function showTune() {
+  const file = tune();
+  find("#chosen").textContent = file ? text("new.chosen", { name: file.name, size: Math.ceil(file.size / 1024) }) : "";
 }
 
-// Shows what is under way, and gives what sending tells and a way to end it.
-function begin() {
+function underWay(isUnderWay) {
+  find("#under-way").hidden = !isUnderWay;
+  find("#give-up").hidden = !isUnderWay;
+  find("#send").disabled = isUnderWay;
+}
+
+function told(stage, share) {
   const progress = find("#progress");
-  let clock = null;
-  form.inert = true;
-  underWay.hidden = false;
-  find("#made").hidden = true;
-  find("#elapsed").textContent = "";
-  progress.value = 0;
-  setStage(text("new.uploading"));
-  find("#stage").focus();
-  return {
-    sent(share) {
-      progress.value = 100 * share;
-      find("#elapsed").textContent = text("new.uploaded", { percent: Math.round(100 * share) });
-    },
-    planning() {
-      const began = performance.now();
-      const tell = () => {
-        const seconds = Math.floor((performance.now() - began) / 1000);
-        find("#elapsed").textContent = text("new.planning_told", { seconds });
-      };
-      progress.removeAttribute("value");
-      setStage(text("new.planning"));
-      tell();
-      clock = setInterval(tell, 1000);
-    },
-    end() {
-      clearInterval(clock);
-      form.inert = false;
-      underWay.hidden = true;
-    },
-  };
+  find("#stage").textContent = text(`new.${stage}`);
+  if (share === null) progress.removeAttribute("value");
+  else progress.value = share;
 }
 
-const pageOf = (fingerprint) => `/discs/${encodeURIComponent(fingerprint)}`;
-
-function showMade({ location, value }) {
-  if (location) {
-    say(text("new.made"));
-    window.location.assign(pageOf(location.split("/").pop()));
+function led(made) {
+  if (made.fingerprint) {
+    location.assign(`/discs/${made.fingerprint}`);
     return;
   }
-  const lines = value.discs.map(({ fingerprint, title, disc, good_to_cut: isGood }) =>
-    el(
-      "li",
-      {},
-      el("a", { href: pageOf(fingerprint) }, text("new.disc", { ...disc, title })),
-      el("span", { class: isGood ? "good" : "bad" }, ` – ${text(isGood ? "new.good" : "new.not_good")}`),
-    ),
-  );
-  const made = find("#made");
-  find("ul", made).replaceChildren(...lines);
-  made.hidden = false;
-  made.focus();
+  const discs = made.discs.map(({ fingerprint, title, disc }) =>
+    el("li", {}, el("a", { href: `/discs/${fingerprint}` }, text("new.disc_of", { title, number: disc.number, of: disc.of }))));
+  const list = find("#made");
+  list.replaceChildren(el("h2", {}, text("new.made_several", { count: discs.length })), el("ul", {}, discs));
+  list.focus();
 }
 
-async function makeDisc() {
-  faults.clear();
-  const given = await tuneFrom(tune, pageData("new-data").most_bytes);
-  const found = settings.missing().map((field) => ({ field, words: text("new.needed") }));
-  if (given.words) found.unshift({ field: tune, words: given.words });
-  if (found.length) return faults.show(found);
-  const giveUp = new AbortController();
-  find("#give-up").onclick = () => giveUp.abort();
-  const stages = begin();
-  const asked = { tune: given.tune, settings: settings.read(), movement: find("#movement").value };
+async function begin(event) {
+  event.preventDefault();
+  clear();
+  const file = tune();
+  if (!file) return tell({ type: "/problems/tune-missing", detail: text("new.no_tune") });
+  if (file.size > Number(form.dataset.mostBytes)) {
+    const most = Math.floor(Number(form.dataset.mostBytes) / 1024);
+    return tell({ type: "/problems/upload-too-large", detail: text("new.too_large", { most }) });
+  }
+  const ending = new AbortController();
+  find("#give-up").onclick = () => ending.abort();
+  underWay(true);
+  told("sending", 0);
+  const asked = { tune: file, movement: find("#movement").value, cutter: find("#cutter").value, settings: settingsOf(form, kept) };
   try {
-    const made = await send({ ...asked, cutter: find("#cutter").value }, stages, giveUp.signal);
-    stages.end();
-    showMade(made);
+    led(await send(asked, { told, giveUp: ending.signal }));
   } catch (fault) {
-    stages.end();
-    if (fault instanceof GivenUp) {
-      say(text("new.given_up"));
-      find("#send").focus();
-    } else if (fault instanceof Problem) faults.show(faultsOf(form, fault.told, given.name));
-    else throw fault;
+    if (!fault.told) throw fault;
+    tell(fault.told);
+  } finally {
+    underWay(false);
   }
 }
 
-form.addEventListener("submit", (event) => {
-  event.preventDefault();
-  if (!form.inert) makeDisc();
-});
-tune.addEventListener("change", () => showChosen(tune));
-takeDrops(tune, find("#drop"), (words) => faults.show([{ field: tune, words }]));
-find("#settings-file").addEventListener("change", async ({ target }) => {
-  const [file] = target.files;
+async function fromFile({ target }) {
+  const file = target.files[0];
   if (!file) return;
-  faults.clear();
-  const words = await takeFrom(file, settings);
+  clear();
+  try {
+    const settings = JSON.parse(await file.text());
+    if (settings === null || typeof settings !== "object" || Array.isArray(settings)) throw new SyntaxError();
+    kept = show(form, settings);
+    say(text("new.settings_read", { name: file.name }));
+  } catch {
+    tell({ detail: text("new.settings_unread", { name: file.name }) });
+  }
   target.value = "";
-  if (words) faults.show([{ field: target, words }]);
+}
+
+function toFile() {
+  const words = `${JSON.stringify(settingsOf(form, kept), null, 2)}\n`;
+  const address = URL.createObjectURL(new Blob([words], { type: "application/json" }));
+  el("a", { href: address, download: "settings.json" }).click();
+  setTimeout(() => URL.revokeObjectURL(address), 1000);
+}
+
+form.addEventListener("submit", begin);
+input.addEventListener("change", () => { dropped = null; showTune(); });
+for (const name of ["dragenter", "dragover"]) {
+  drop.addEventListener(name, (event) => { event.preventDefault(); drop.classList.add("over"); });
+}
+drop.addEventListener("dragleave", () => drop.classList.remove("over"));
+drop.addEventListener("drop", (event) => {
+  event.preventDefault();
+  drop.classList.remove("over");
+  if (event.dataTransfer.files.length) { [dropped] = event.dataTransfer.files; showTune(); }
 });
-find("#save-settings").addEventListener("click", () => saveAs(settings, tune.files[0]?.name));
-find("#drop-carried").addEventListener("click", () => {
-  settings.dropCarried();
-  tellCarried(settings);
-  find("#send").focus();
-});
-showChosen(tune);
+find("#settings-file").addEventListener("change", fromFile);
+find("#save-settings").addEventListener("click", toFile);
+showTune();
+form.dataset.ready = "true";

@@ -1,43 +1,40 @@
-// Sends a tune and its settings, and says how far that is; what is under way can be given up.
-import { Problem, tokenOfThisBrowser } from "../asking.js";
+// Sends the tune and says how far it is; fetch cannot tell of an upload, so this is the older way of asking.
+import { Problem } from "../asking.js";
 import { text } from "../texts.js";
 
-export class GivenUp extends Error {}
-
-function told(request) {
-  const kind = request.getResponseHeader("Content-Type") || "";
-  const unexpected = { detail: text("common.unexpected", { status: request.status }) };
-  if (!kind.includes("json")) return unexpected;
-  try {
-    return JSON.parse(request.responseText);
-  } catch {
-    return unexpected;
-  }
+async function token() {
+  const answer = await fetch("/v1/keys/me", { headers: { Accept: "application/json" } });
+  return answer.ok ? ((await answer.json()).csrf_token ?? "") : "";
 }
 
-// Gives { location, value } of the answer. Raises Problem in the service's words, or GivenUp.
-// on.sent(share) while the tune is on its way, on.planning() once it has arrived; signal gives up.
-export async function send({ tune, settings, movement, cutter }, on, signal) {
-  const token = await tokenOfThisBrowser();
-  if (signal.aborted) throw new GivenUp();
+// Gives { address, discs }: where the layout is, or several. `told(stage, share)` hears how far it is.
+export async function send({ tune, movement, cutter, settings }, { told, giveUp }) {
   const form = new FormData();
-  form.append("tune", tune, "tune.mid");
-  form.append("settings", new Blob([JSON.stringify(settings)], { type: "application/json" }), "settings.json");
-  return new Promise((resolve, reject) => {
-    const request = new XMLHttpRequest();
-    request.open("POST", `/v1/layouts?${new URLSearchParams({ movement, cutter })}`);
-    request.setRequestHeader("Accept", "application/json");
-    if (token) request.setRequestHeader("X-CSRF-Token", token);
-    request.upload.addEventListener("progress", ({ loaded, total }) => on.sent(total ? loaded / total : 0));
-    request.upload.addEventListener("load", () => on.planning());
-    request.addEventListener("load", () => {
-      const value = told(request);
-      if (request.status !== 201) reject(new Problem(value));
-      else resolve({ location: request.getResponseHeader("Location"), value });
+  form.append("tune", tune, tune.name);
+  form.append("settings", new Blob([JSON.stringify(settings)], { type: "application/json" }));
+  const own = await token();
+  const asked = new XMLHttpRequest();
+  asked.open("POST", `/v1/layouts?${new URLSearchParams({ movement, cutter })}`);
+  asked.setRequestHeader("Accept", "application/json");
+  if (own) asked.setRequestHeader("X-CSRF-Token", own);
+  asked.upload.addEventListener("progress", ({ loaded, total }) => told("sending", total ? loaded / total : 0));
+  asked.upload.addEventListener("load", () => told("planning", null));
+  giveUp.addEventListener("abort", () => asked.abort());
+  return new Promise((done, failed) => {
+    const fail = (key) => failed(new Problem({ detail: text(key) }));
+    asked.addEventListener("error", () => fail("common.unreachable"));
+    asked.addEventListener("abort", () => fail("new.given_up"));
+    asked.addEventListener("load", () => {
+      let value = null;
+      try {
+        value = JSON.parse(asked.responseText);
+      } catch {
+        failed(new Problem({ detail: text("common.unexpected", { status: asked.status }) }));
+        return;
+      }
+      if (asked.status === 201) done(value);
+      else failed(new Problem(value));
     });
-    request.addEventListener("error", () => reject(new Problem({ detail: text("common.unreachable") })));
-    request.addEventListener("abort", () => reject(new GivenUp()));
-    signal.addEventListener("abort", () => request.abort());
-    request.send(form);
+    asked.send(form);
   });
 }
