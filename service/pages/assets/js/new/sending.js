@@ -1,18 +1,13 @@
 // Sends the tune and says how far it is; fetch cannot tell of an upload, so this is the older way of asking.
-import { Problem } from "../asking.js";
+import { Problem, tokenOfThisBrowser } from "../asking.js";
 import { text } from "../texts.js";
 
-async function token() {
-  const answer = await fetch("/v1/keys/me", { headers: { Accept: "application/json" } });
-  return answer.ok ? ((await answer.json()).csrf_token ?? "") : "";
-}
-
-// Gives { address, discs }: where the layout is, or several. `told(stage, share)` hears how far it is.
+// Gives what the API tells of the layout, or of several. `told(stage, share)` hears how far it is.
 export async function send({ tune, movement, cutter, settings }, { told, giveUp }) {
   const form = new FormData();
   form.append("tune", tune, tune.name);
   form.append("settings", new Blob([JSON.stringify(settings)], { type: "application/json" }));
-  const own = await token();
+  const own = await tokenOfThisBrowser();
   const asked = new XMLHttpRequest();
   asked.open("POST", `/v1/layouts?${new URLSearchParams({ movement, cutter })}`);
   asked.setRequestHeader("Accept", "application/json");
