@@ -5,10 +5,10 @@ import { ask } from "../asking.js";
 const ASKS_EVERY_MS = 15_000; // where there is no stream
 const LOOKS_EVERY_MS = 3_000; // while a worker has the order: that one took it is no event
 
-// Calls `happened` after each event past those that the page shows.
-export function followEvents({ address, events, last, types, version }, happened) {
+// Calls `happened` where the order is another than the one of the version last seen.
+function lookAt(address, version, happened) {
   let seen = version;
-  const look = async () => {
+  return async () => {
     try {
       const { headers } = await ask("GET", address, { headers: { "If-None-Match": `"${seen}"` } });
       const now = headers.get("ETag")?.replaceAll(/\D/g, "");
@@ -20,13 +20,35 @@ export function followEvents({ address, events, last, types, version }, happened
       // away for a moment, or unchanged (304): asked again the next time
     }
   };
-  setInterval(() => {
-    if (pageData("order-data").unplanned) look();
-  }, LOOKS_EVERY_MS);
-  const stream = new EventSource(`${events}?after=${last}`);
-  for (const type of types) stream.addEventListener(type, () => happened());
-  stream.addEventListener("error", () => {
-    // A stream that ends is opened anew by the browser, from the last event on; one that was refused is not.
-    if (stream.readyState === EventSource.CLOSED) setInterval(look, ASKS_EVERY_MS);
-  });
+}
+
+// Calls `happened` after each event past those that the page shows. A page that nobody looks at holds no stream: a
+// browser opens few connections to one service, and each stream takes one for itself.
+export function followEvents({ address, events, last, types, version }, happened) {
+  const look = lookAt(address, version, happened);
+  let stream = null;
+  let after = last;
+  let isRefused = false;
+  const open = () => {
+    stream = new EventSource(`${events}?after=${after}`);
+    for (const type of types) {
+      stream.addEventListener(type, ({ lastEventId }) => {
+        after = lastEventId;
+        happened();
+      });
+    }
+    stream.addEventListener("error", () => {
+      // A stream that ends is opened anew by the browser, from the last event on; one that was refused is not.
+      isRefused = stream?.readyState === EventSource.CLOSED;
+    });
+  };
+  const openOrClose = () => {
+    stream?.close();
+    stream = null;
+    if (!document.hidden) open();
+  };
+  setInterval(() => !document.hidden && pageData("order-data").unplanned && look(), LOOKS_EVERY_MS);
+  setInterval(() => !document.hidden && isRefused && look(), ASKS_EVERY_MS);
+  document.addEventListener("visibilitychange", openOrClose);
+  openOrClose();
 }
