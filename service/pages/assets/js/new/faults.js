@@ -28,7 +28,6 @@ function fieldOf(pointer) {
   return null;
 }
 
-<<<<<<< HEAD
 const labelOf = (id) => find(`label[for="${id}"]`).textContent;
 
 export function tell(told) {
@@ -37,39 +36,19 @@ export function tell(told) {
     const id = fieldOf(pointer);
     if (id && at(id, detail)) shown.push({ id, words: detail });
     else shown.push({ id: null, words: `${pointer} ${detail}` });
-=======
-export function tell(told) {
-  const shown = [];
-  if (told.document === "settings" || told.invalid_params) {
-    for (const { pointer, detail } of told.invalid_params ?? []) {
-      const id = fieldOf(pointer);
-      if (id && at(id, detail)) shown.push({ id, words: detail });
-      else shown.push({ id: null, words: `${pointer} ${detail}` });
-    }
->>>>>>> pages
   }
   const kind = (told.type ?? "").split("/").at(-1);
   const named = { "midi-unreadable": "tune", "tune-missing": "tune", "upload-too-large": "tune" }[kind]
     ?? { "movement-unknown": "movement", "cutter-unknown": "cutter" }[kind];
   if (shown.length === 0 && named) {
-<<<<<<< HEAD
     at(named, told.detail);
     shown.push({ id: named, words: told.detail });
-=======
-    const words = told.remedy ? `${told.detail}. ${told.remedy}` : told.detail;
-    at(named, words);
-    shown.push({ id: named, words });
->>>>>>> pages
   }
   const top = find("#faults");
   const head = shown.length ? text("new.faults", { count: shown.length }) : (told.detail ?? told.title);
   top.append(el("p", {}, head));
   if (shown.length) {
-<<<<<<< HEAD
     top.append(el("ul", {}, shown.map(({ id, words }) => el("li", {}, id ? el("a", { href: `#${id}` }, `${labelOf(id)}: ${words}`) : words))));
-=======
-    top.append(el("ul", {}, shown.map(({ id, words }) => el("li", {}, id ? el("a", { href: `#${id}` }, words) : words))));
->>>>>>> pages
   }
   top.focus();
 }
