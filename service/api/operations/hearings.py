@@ -45,74 +45,76 @@ def _answers(media_type: str) -> tuple[Answer, ...]:
     )
 
 
-LAYOUT_SOUND = Operation(
-    id="tell_layout_sound",
-    tag="layouts",
-    summary="A layout as it sounds",
-    description=_SOUND,
-    query=SoundQuery,
-    headers=_HEAD,
-    answers=_answers(WAV_MEDIA_TYPE),
-    problems=("layout-unknown", *_PROBLEMS),
-    examples=(
+def _sound(whose: str, tag: str, summary: str, unknown: tuple[str, ...], examples: tuple[Example, ...]) -> Operation:
+    return Operation(
+        id=f"tell_{whose}_sound",
+        tag=tag,
+        summary=summary,
+        description=_SOUND,
+        query=SoundQuery,
+        headers=_HEAD,
+        answers=_answers(WAV_MEDIA_TYPE),
+        problems=(*unknown, *_PROBLEMS),
+        examples=examples,
+    )
+
+
+def _plucks(whose: str, tag: str, summary: str, unknown: tuple[str, ...], example: Example) -> Operation:
+    return Operation(
+        id=f"tell_{whose}_plucks",
+        tag=tag,
+        summary=summary,
+        description=_PLUCKS,
+        query=PlucksQuery,
+        headers=_HEAD,
+        answers=_answers(MIDI),
+        problems=(*unknown, *_PROBLEMS),
+        examples=(example,),
+    )
+
+
+_HEADER_ALONE = {"Range": "bytes=0-43"}
+_A_DISC = {"revision": 1, "disc": 1}
+_OF_LAYOUTS, _OF_ORDERS, _OF_PROOFS = ("layout-unknown",), ("order-unknown",), ("proof-refused", "order-unknown")
+
+LAYOUT_SOUND = _sound(
+    "layout",
+    "layouts",
+    "A layout as it sounds",
+    _OF_LAYOUTS,
+    (
         Example(status=200, given="a layout", query={"of": "written", "bits": "24"}),
-        Example(status=206, given="a layout", headers={"Range": "bytes=0-43"}),
+        Example(status=206, given="a layout", headers=_HEADER_ALONE),
     ),
 )
-LAYOUT_PLUCKS = Operation(
-    id="tell_layout_plucks",
-    tag="layouts",
-    summary="What a layout plays, as MIDI",
-    description=_PLUCKS,
-    query=PlucksQuery,
-    headers=_HEAD,
-    answers=_answers(MIDI),
-    problems=("layout-unknown", *_PROBLEMS),
-    examples=(Example(status=200, given="a layout"),),
+LAYOUT_PLUCKS = _plucks(
+    "layout", "layouts", "What a layout plays, as MIDI", _OF_LAYOUTS, Example(status=200, given="a layout")
 )
-ORDER_SOUND = Operation(
-    id="tell_order_sound",
-    tag="orders",
-    summary="A disc of a plan as it sounds",
-    description=_SOUND,
-    query=SoundQuery,
-    headers=_HEAD,
-    answers=_answers(WAV_MEDIA_TYPE),
-    problems=("order-unknown", *_PROBLEMS),
-    examples=(
-        Example(status=206, given="a ready order", path={"revision": 1, "disc": 1}, headers={"Range": "bytes=0-43"}),
-    ),
+ORDER_SOUND = _sound(
+    "order",
+    "orders",
+    "A disc of a plan as it sounds",
+    _OF_ORDERS,
+    (Example(status=206, given="a ready order", path=_A_DISC, headers=_HEADER_ALONE),),
 )
-ORDER_PLUCKS = Operation(
-    id="tell_order_plucks",
-    tag="orders",
-    summary="What a disc of a plan plays, as MIDI",
-    description=_PLUCKS,
-    query=PlucksQuery,
-    headers=_HEAD,
-    answers=_answers(MIDI),
-    problems=("order-unknown", *_PROBLEMS),
-    examples=(Example(status=200, given="a ready order", path={"revision": 1, "disc": 1}),),
+ORDER_PLUCKS = _plucks(
+    "order",
+    "orders",
+    "What a disc of a plan plays, as MIDI",
+    _OF_ORDERS,
+    Example(status=200, given="a ready order", path=_A_DISC),
 )
-PROOF_SOUND = Operation(
-    id="tell_proof_sound",
-    tag="proofs",
-    summary="A disc of a proof as it sounds",
-    description=_SOUND,
-    query=SoundQuery,
-    headers=_HEAD,
-    answers=_answers(WAV_MEDIA_TYPE),
-    problems=("proof-refused", "order-unknown", *_PROBLEMS),
-    examples=(Example(status=206, given="a proof", path={"disc": 1}, headers={"Range": "bytes=0-43"}),),
+PROOF_SOUND = _sound(
+    "proof",
+    "proofs",
+    "A disc of a proof as it sounds",
+    _OF_PROOFS,
+    (Example(status=206, given="a proof", path={"disc": 1}, headers=_HEADER_ALONE),),
 )
-PROOF_PLUCKS = Operation(
-    id="tell_proof_plucks",
-    tag="proofs",
-    summary="What a disc of a proof plays, as MIDI",
-    description=_PLUCKS,
-    query=PlucksQuery,
-    headers=_HEAD,
-    answers=_answers(MIDI),
-    problems=("proof-refused", "order-unknown", *_PROBLEMS),
-    examples=(Example(status=200, given="a proof", path={"disc": 1}),),
+PROOF_PLUCKS = _plucks(
+    "proof",
+    "proofs",
+    "What a disc of a proof plays, as MIDI",
+    _OF_PROOFS,
+    Example(status=200, given="a proof", path={"disc": 1}),
 )
