@@ -1,5 +1,7 @@
 """The page on which a disc is begun: every setting has its field, with the default of the settings themselves."""
 
+import posixpath
+import re
 from collections.abc import Iterator
 from html.parser import HTMLParser
 from typing import Any
@@ -10,6 +12,8 @@ from pydantic import BaseModel
 
 from layout.documents import Settings
 from service.app import create_app
+from service.pages.assets import assets
+from service.pages.texts import for_scripts
 from service.parts import Parts
 from service.settings import AccessSettings, ServiceSettings
 
@@ -120,3 +124,19 @@ def test_every_field_has_a_label_and_a_place_for_its_fault(shown: Fields) -> Non
 def test_what_ships_can_be_chosen_and_the_default_cutter_comes_first(shown: Fields) -> None:
     assert shown.options["movement"] == ["fernhollow-31", "mossbrook-67", "tarnlight-17"]
     assert shown.options["cutter"][0] == "fibre-laser"
+
+
+def test_the_scripts_of_the_page_find_their_elements_their_texts_and_what_they_import(shown: Fields) -> None:
+    folder = "js/new/"
+    scripts = {name: asset.content.decode() for name, asset in assets().items() if name.startswith(folder)}
+    texts_given = for_scripts(("new",))
+
+    assert len(scripts) > 0
+    for name, script in scripts.items():
+        assert set(re.findall(r'find\("#([\w-]+)"\)', script)) <= shown.ids, name
+        assert set(re.findall(r'text\("([\w.]+)"', script)) <= texts_given.keys(), name
+        for imported in re.findall(r'from "(\.[^"]+)"', script):
+            assert posixpath.normpath(folder + imported) in assets(), name
+    told = {f"new.{stage}" for stage in re.findall(r'told\("(\w+)"', "".join(scripts.values()))}
+    assert len(told) > 0
+    assert told <= texts_given.keys()
