@@ -68,7 +68,7 @@ PAGES = (
     ),
     ShownPage(name="cutter-add", route="/cutters/add", path="/cutters/add", ready="form[data-ready]", signed_in=True),
     ShownPage(name="measuring", route="/measuring", path="/measuring"),
-    ShownPage(name="reference", route="/reference", path="/reference", alike="article"),
+    ShownPage(name="reference", route="/reference", path="/reference", alike="article, section[id^=shape-]"),
     ShownPage(name="problem", route="", path="/nowhere", status=404),
 )
 # Routes of pages that are no page of their own: what pages load.
