@@ -3,6 +3,8 @@
 import math
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from itertools import groupby
+from operator import attrgetter
 from typing import Any
 
 from layout.documents import Cutter, Movement, read_cutter, read_movement, shipped_cutter, shipped_cutter_ids
@@ -37,8 +39,12 @@ TOLD_ELSEWHERE = frozenset({"format", "id", "revision", "title", "tracks", "teet
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class ValueTold:
-    """A row: the field in words, its value with the unit, how far it may be off, what it stands on; "" for unsaid."""
+    """A row: the field in words, its value with the unit, how far it may be off, what it stands on; "" for unsaid.
 
+    `part` is what of the group the field belongs to, such as one hole of a blank; "" for the group itself.
+    """
+
+    part: str
     name: str
     value: str
     plus_minus: str
@@ -59,8 +65,16 @@ class TrackTold:
     why: str
 
 
-def values_of(document: KeptDocument) -> tuple[tuple[str, tuple[ValueTold, ...]], ...]:
-    """The values of a document by group, but for what its page tells elsewhere: each group's title and rows."""
+@dataclass(frozen=True, slots=True, kw_only=True)
+class GroupTold:
+    """A table of values: its title, and its rows under the headings of its parts; a group's own have the heading ""."""
+
+    title: str
+    parts: tuple[tuple[str, tuple[ValueTold, ...]], ...]
+
+
+def values_of(document: KeptDocument) -> tuple[GroupTold, ...]:
+    """The values of a document by group, but for what its page tells elsewhere."""
     read = (read_movement if document.kind == "movement" else read_cutter)(document.text)
     told = document_told(read)
     _, stated = read_json(document.text, document=document.kind)
@@ -73,7 +87,11 @@ def values_of(document: KeptDocument) -> tuple[tuple[str, tuple[ValueTold, ...]]
             groups[f"/{name}"] = (field_words(name), value)
         else:
             groups |= {f"/{name}/{n}": (f"{field_words(name)} · {n + 1}", part) for n, part in enumerate(value)}
-    return tuple((title, tuple(_rows(value, place, (), stated))) for place, (title, value) in groups.items() if value)
+    return tuple(
+        GroupTold(title=title, parts=_by_part(_rows(value, place, (), stated)))
+        for place, (title, value) in groups.items()
+        if value
+    )
 
 
 def tracks_of(movement: Movement, cutter: Cutter | None = None) -> tuple[TrackTold, ...]:
@@ -132,6 +150,10 @@ def _is_group(value: object) -> bool:
     return isinstance(value, dict | list | tuple)
 
 
+def _by_part(rows: Iterator[ValueTold]) -> tuple[tuple[str, tuple[ValueTold, ...]], ...]:
+    return tuple((part, tuple(told)) for part, told in groupby(rows, key=attrgetter("part")))
+
+
 def _rows(
     value: Any, pointer: str, names: tuple[str, ...], stated: Mapping[str, Stated], field: str = ""
 ) -> Iterator[ValueTold]:
@@ -143,7 +165,13 @@ def _rows(
         _is_group(part) or f"{pointer}/{place}" in stated for place, part in enumerate(value)
     ):
         if value:
-            yield ValueTold(name=" · ".join(names), value=" / ".join(map(_shown, value)), plus_minus="", basis="")
+            yield ValueTold(
+                part=" · ".join(names[:-1]),
+                name=_last(names),
+                value=" / ".join(map(_shown, value)),
+                plus_minus="",
+                basis="",
+            )
     elif isinstance(value, list | tuple):
         for place, part in enumerate(value):
             yield from _rows(part, f"{pointer}/{place}", (*names, str(place + 1)), stated, field)
@@ -151,11 +179,16 @@ def _rows(
         worth = stated.get(pointer)
         unit = unit_of(field)
         yield ValueTold(
-            name=" · ".join(names),
+            part=" · ".join(names[:-1]),
+            name=_last(names),
             value=_shown(value) + ("" if not unit else unit if unit == "°" else f" {unit}"),
             plus_minus=_off(worth),
             basis="" if worth is None else text_of(f"script.movements.basis_{worth.basis}"),
         )
+
+
+def _last(names: tuple[str, ...]) -> str:
+    return names[-1] if names else ""  # a bare value in a list is a group of its own
 
 
 def _has_words(name: str) -> bool:

@@ -158,9 +158,24 @@ def test_a_field_has_the_unit_its_name_carries(name: str, unit: str) -> None:
 
 def test_values_stand_in_groups_and_a_list_of_numbers_in_one_row() -> None:
     press = KeptDocument(kind="cutter", id="turn-press", revision=1, text=shipped_text("turn-press"), owner_id=None)
-    groups = {name: {row.name: row.value for row in rows} for name, rows in values_of(press)}
+    groups = {
+        group.title: {row.name: row.value for _, rows in group.parts for row in rows} for group in values_of(press)
+    }
 
     assert groups["In general"]["Kerf"] == "0 mm"
     assert groups["Tools · 3"]["Working edge ahead of the strike point"] == "-1.1 mm"
     assert groups["Least sizes in sheet thicknesses: error, warning, advice below"]["Hole"] == "1 / 1.2 / 1.5"
     assert groups["Rates"]["For each hit"] == "0.004"
+
+
+def test_what_a_blank_has_more_than_one_of_stands_under_a_heading_each() -> None:
+    text = shipped_text("mossbrook-67")
+    movement = KeptDocument(kind="movement", id="mossbrook-67", revision=1, text=text, owner_id=None)
+    (disc,) = [group for group in values_of(movement) if group.title == "Disc"]
+
+    assert [part for part, _ in disc.parts] == [
+        "",
+        "Holes, slots and notches of the blank · 1",
+        "Holes, slots and notches of the blank · 2",
+    ]
+    assert [row.name for row in disc.parts[1][1]][:2] == ["What for", "Shape"]
