@@ -1,20 +1,18 @@
-"""A drawing as a DXF file, through ezdxf, entity by entity in cutting order."""
+"""A drawing as a DXF file, entity by entity in cutting order."""
 
-from ezdxf.entities.lwpolyline import LWPolyline
-from ezdxf.entities.polyline import Polyline
-from ezdxf.layouts.layout import Modelspace
-from ezdxf.lldxf.const import DXF12
+from collections.abc import Sequence
+
+import numpy as np
 
 from layout.cut.plan import Circles, Drawing, Entity, Lettering, Outlines, Points
 from layout.documents.cutter import Cutter
+from layout.mechanics.arrays import FloatArray
 from layout.write.dxf_document import bytes_of, new_document
+from layout.write.dxf_entities import APP_ID, Entities, entities_of
 from layout.write.extents import extents_mm
 from layout.write.numbers import DECIMALS_BULGE, rounded
-from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
-APP_ID = "DISCWRIGHT"  # under which lettering carries its words as extended data
 UNIT_SAID = {"R12": ("unit: mm; release R12 has no header variable for it",)}
-STRING = 1000  # DXF reference: a string of extended data
 
 
 def write_dxf(drawing: Drawing, cutter: Cutter) -> bytes:
@@ -42,43 +40,34 @@ def write_dxf(drawing: Drawing, cutter: Cutter) -> bytes:
             document.layers.add(wanted.name, color=wanted.colour)
     if any(isinstance(entity, Lettering) for entity in drawing.entities):
         document.appids.add(APP_ID)
+    entities = entities_of(document)
     for entity in drawing.entities:
-        _add(document.modelspace(), entity, {"layer": cutter.layer(entity.layer).name})
+        _add(entities, entity, cutter.layer(entity.layer).name)
     return bytes_of(document, (*drawing.comments, *UNIT_SAID.get(cutter.drawing_release, ())))
 
 
-def _add(space: Modelspace, entity: Entity, on_layer: dict[str, str]) -> None:
+def _add(entities: Entities, entity: Entity, layer: str) -> None:
     match entity:
         case Outlines():
-            bulges = rounded(entity.bulges, DECIMALS_BULGE).tolist()
-            for points in rounded(entity.points_mm).tolist():
-                vertices = [(x, y, bulge) for (x, y), bulge in zip(points, bulges, strict=True)]
-                add_polyline(space, vertices, on_layer, closed=entity.closed)
+            bulges = rounded(entity.bulges, DECIMALS_BULGE)
+            entities.add_polylines(layer, rounded(entity.points_mm), bulges, closed=entity.closed)
         case Circles():
-            centres = rounded(entity.centres_mm).tolist()
-            for centre, radius_mm in zip(centres, rounded(entity.radius_mm).tolist(), strict=True):
-                space.add_circle(centre, radius_mm, dxfattribs=on_layer)
+            entities.add_circles(layer, rounded(entity.centres_mm), rounded(entity.radius_mm).tolist())
         case Points():
-            for point in rounded(entity.points_mm).tolist():
-                space.add_point(point, dxfattribs=on_layer)
+            entities.add_points(layer, rounded(entity.points_mm))
         case Lettering():
-            straight = [[(x, y, 0.0) for x, y in rounded(stroke).tolist()] for stroke in entity.strokes_mm]
-            lines = [add_polyline(space, stroke, on_layer, closed=False) for stroke in straight]
-            for first in lines[:1]:
-                first.set_xdata(APP_ID, [(STRING, dxf_text(entity.text, MOST_DXF_STRING))])
+            add_strokes(entities, layer, [rounded(stroke) for stroke in entity.strokes_mm], entity.text)
 
 
-def add_polyline(
-    space: Modelspace, vertices: list[tuple[float, float, float]], on_layer: dict[str, str], *, closed: bool
-) -> Polyline | LWPolyline:
-    """One polyline, as the document's release has them.
+def add_strokes(entities: Entities, layer: str, strokes_mm: Sequence[FloatArray], text: str) -> None:
+    """Lettering as open lines, the first of which carries the words.
 
     Args:
-        space: The model space of the document.
-        vertices: (x, y, bulge) of each.
-        on_layer: The attributes of the entity.
-        closed: Whether the last vertex joins the first.
+        entities: What takes them.
+        layer: The name of their layer in the file.
+        strokes_mm: The strokes, each of shape (k, 2), rounded.
+        text: What they say.
     """
-    if space.dxfversion == DXF12:
-        return space.add_polyline2d(vertices, format="xyb", close=closed, dxfattribs=on_layer)
-    return space.add_lwpolyline(vertices, format="xyb", close=closed, dxfattribs=on_layer)
+    for place, stroke in enumerate(strokes_mm):
+        words = text if place == 0 else ""
+        entities.add_polylines(layer, stroke[np.newaxis], np.zeros(len(stroke)), closed=False, words=words)

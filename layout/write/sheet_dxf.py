@@ -4,18 +4,17 @@ from collections.abc import Iterator
 
 import numpy as np
 from ezdxf.document import Drawing
-from ezdxf.layouts.layout import Modelspace
 
 from layout.documents.cutter import LAYER_COLOURS, layer_of
 from layout.documents.sheets import CLAMPS_LAYER, STOCK_LAYER
 from layout.mechanics.arrays import FloatArray
 from layout.mechanics.drawn import DrawnArc, DrawnCircle, DrawnDisc, DrawnEntity, DrawnLine, DrawnPoint
 from layout.mechanics.lettering import strokes_mm
-from layout.sheets.plan import DiscKind, Label, Sheet, SheetPlan
-from layout.write.dxf import APP_ID, STRING, UNIT_SAID, add_polyline
+from layout.sheets.plan import DiscKind, Sheet, SheetPlan
+from layout.write.dxf import UNIT_SAID, add_strokes
 from layout.write.dxf_document import Release, bytes_of, new_document
+from layout.write.dxf_entities import APP_ID, Entities, entities_of
 from layout.write.numbers import DECIMALS_BULGE, rounded
-from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
 RIM, MARKS = "RIM", "MARKS"
 # Colour indices (AutoCAD Color Index of the DXF reference), none of what is cut.
@@ -47,24 +46,24 @@ def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
     lettered = any(isinstance(each, DrawnLine) and each.words for drawn in _drawings(kinds) for each in drawn.entities)
     if lettered or any(sheet.labels):
         document.appids.add(APP_ID)
-    space = document.modelspace()
+    entities = entities_of(document)
     for layer, outlines in ((STOCK_LAYER, rings), (CLAMPS_LAYER, zones)):
         for outline in outlines:
-            straight = [(x, y, 0.0) for x, y in rounded(outline).tolist()]
-            add_polyline(space, straight, {"layer": layer}, closed=True)
+            entities.add_polylines(layer, rounded(outline)[np.newaxis], np.zeros(len(outline)), closed=True)
     names = {ours: layer_of(plan.layers, ours).name for ours in LAYER_COLOURS}
     placed = zip(
         sheet.kind.tolist(), rounded(sheet.centres_mm), rounded(sheet.radius_mm).tolist(), sheet.labels, strict=True
     )
     for kind, centre_mm, radius_mm, label in placed:
         if label is not None:
-            _add_label(space, label, {"layer": names[MARKS]})
+            strokes = [rounded(stroke + label.at_mm) for stroke in strokes_mm(label.text, label.height_mm)]
+            add_strokes(entities, names[MARKS], strokes, label.text)
         drawn = plan.kinds[kind].drawing
         if drawn is None:
-            space.add_circle(centre_mm, radius_mm, dxfattribs={"layer": names[RIM]})
+            entities.add_circles(names[RIM], centre_mm[np.newaxis], [radius_mm])
         else:
             for entity in drawn.entities:
-                _add_moved(space, entity, centre_mm, {"layer": names[entity.layer]})
+                _add_moved(entities, entity, centre_mm, names[entity.layer])
     return bytes_of(document, (*_comments(plan, sheet, number), *_of_the_drawings(kinds), *UNIT_SAID.get(release, ())))
 
 
@@ -100,29 +99,18 @@ def _add_layers(document: Drawing, plan: SheetPlan, layers: list[str]) -> None:
             document.layers.add(name, color=colour)
 
 
-def _add_label(space: Modelspace, label: Label, on_layer: dict[str, str]) -> None:
-    strokes = [rounded(stroke + label.at_mm).tolist() for stroke in strokes_mm(label.text, label.height_mm)]
-    lines = [add_polyline(space, [(x, y, 0.0) for x, y in stroke], on_layer, closed=False) for stroke in strokes]
-    for first in lines[:1]:
-        first.set_xdata(APP_ID, [(STRING, dxf_text(label.text, MOST_DXF_STRING))])
-
-
-def _add_moved(space: Modelspace, entity: DrawnEntity, by_mm: FloatArray, on_layer: dict[str, str]) -> None:
+def _add_moved(entities: Entities, entity: DrawnEntity, by_mm: FloatArray, layer: str) -> None:
     match entity:
         case DrawnCircle():
-            space.add_circle(rounded(entity.centre_mm + by_mm), entity.radius_mm, dxfattribs=on_layer)
+            entities.add_circles(layer, rounded(entity.centre_mm + by_mm)[np.newaxis], [entity.radius_mm])
         case DrawnArc():
-            centre, ends_deg = rounded(entity.centre_mm + by_mm), (entity.from_deg, entity.to_deg)
-            space.add_arc(centre, entity.radius_mm, *ends_deg, dxfattribs=on_layer)
+            ends_deg = (entity.from_deg, entity.to_deg)
+            entities.add_arc(layer, rounded(entity.centre_mm + by_mm), entity.radius_mm, ends_deg)
         case DrawnPoint():
-            space.add_point(rounded(entity.at_mm + by_mm), dxfattribs=on_layer)
+            entities.add_points(layer, rounded(entity.at_mm + by_mm)[np.newaxis])
         case DrawnLine():
-            places = rounded(entity.points_mm + by_mm).tolist()
-            bulges = rounded(entity.bulge_ratio, DECIMALS_BULGE).tolist()
-            vertices = [(x, y, bulge) for (x, y), bulge in zip(places, bulges, strict=True)]
-            line = add_polyline(space, vertices, on_layer, closed=entity.closed)
-            if entity.words:
-                line.set_xdata(APP_ID, [(STRING, dxf_text(entity.words, MOST_DXF_STRING))])
+            points_mm, bulges = rounded(entity.points_mm + by_mm), rounded(entity.bulge_ratio, DECIMALS_BULGE)
+            entities.add_polylines(layer, points_mm[np.newaxis], bulges, closed=entity.closed, words=entity.words)
 
 
 def _around(zone: FloatArray) -> FloatArray:
