@@ -19,7 +19,7 @@ from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import plucks_response, sound_response
+from service.api.hearings import HEARING_FILES, plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
@@ -209,7 +209,8 @@ class LayoutTeller:
             "title": kept.title,
             "disc": {"number": kept.disc_number, "of": kept.disc_count},
             "good_to_cut": kept.good_to_cut,
-            "links": {name: self.address(kept, name, reason) for name in names},
+            "links": {name: self.address(kept, name, reason) for name in names}
+            | {name: self.address(kept, name, None) for name in HEARING_FILES},
             "layout": json.loads(self._desk.told(kept, reason)["layout.json"]),
         }
 

@@ -7,7 +7,7 @@ from service.api.asking import open_but_counted
 from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import plucks_response, sound_response
+from service.api.hearings import HEARING_FILES, plucks_response, sound_response
 from service.api.models.proofs import VerdictBody
 from service.api.operations import hearings, proofs
 from service.api.order_files import file_of, file_response, heard_of
@@ -48,7 +48,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
                         "of": disc["of"],
                         "asked_count": disc["asked_count"],
                         "kept_count": disc["kept_count"],
-                        "files": {name: f"{proof_address(text)}/files/{disc['number']}/{name}" for name in SHOWN},
+                        "files": _files_shown(text, disc["number"]),
                     }
                     for disc in plan.told["discs"]
                 ],
@@ -61,7 +61,9 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     def give(text: str, disc: int, name: str) -> Response:
         _, plan = proof_shown(parts, proof_of(links, text))
         if name not in SHOWN:
-            raise ProblemError(name="route-unknown", detail=f"a proof shows {', '.join(SHOWN)} alone")
+            raise ProblemError(
+                name="route-unknown", detail=f"a proof shows {', '.join((*SHOWN, *HEARING_FILES))} alone"
+            )
         return file_response(parts, file_of(plan, disc, name), request)
 
     @routes.post("/<text>/verdict")
@@ -92,6 +94,10 @@ def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: Hea
     def give_plucks(text: str, disc: int) -> Response:
         _, plan = proof_shown(parts, proof_of(links, text))
         return plucks_response(shelf, *heard_of(parts, plan, disc), request)
+
+
+def _files_shown(text: str, disc: int) -> dict[str, str]:
+    return {name: f"{proof_address(text)}/files/{disc}/{name}" for name in (*SHOWN, *HEARING_FILES)}
 
 
 def proof_page(text: str) -> str:

@@ -48,6 +48,9 @@ LASER_FILES = [
     *("work-sheet.pdf", "layout.json", "report.json", "making.json"),
 ]
 
+# What every layout's links have besides: made of it when it is asked for.
+HEARING_FILES = ["hearing.wav", "hearing.mid"]
+
 ALL_KEPT = {
     "note_count": 2,
     "kept_count": 2,
