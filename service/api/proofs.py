@@ -1,5 +1,8 @@
 """/v1/proofs: what a customer with a signed link sees of an order, and says about it."""
 
+from collections.abc import Mapping
+from typing import Any
+
 from flask import Blueprint, Response, request
 
 from service.api.answers import json_response
@@ -42,16 +45,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
                 "movement": {"id": order.movement_id, "revision": order.movement_revision},
                 "revision": plan.revision,
                 "waits_for_decision": waits_for_decision(order, proof),
-                "discs": [
-                    {
-                        "number": disc["number"],
-                        "of": disc["of"],
-                        "asked_count": disc["asked_count"],
-                        "kept_count": disc["kept_count"],
-                        "files": _files_shown(text, disc["number"]),
-                    }
-                    for disc in plan.told["discs"]
-                ],
+                "discs": [_disc_shown(text, disc) for disc in plan.told["discs"]],
             }
         )
 
@@ -96,8 +90,10 @@ def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: Hea
         return plucks_response(shelf, *heard_of(parts, plan, disc), request)
 
 
-def _files_shown(text: str, disc: int) -> dict[str, str]:
-    return {name: f"{proof_address(text)}/files/{disc}/{name}" for name in (*SHOWN, *HEARING_FILES)}
+def _disc_shown(text: str, disc: Mapping[str, Any]) -> dict[str, Any]:
+    base = f"{proof_address(text)}/files/{disc['number']}"
+    files = {name: f"{base}/{name}" for name in (*SHOWN, *HEARING_FILES)}
+    return {**{name: disc[name] for name in ("number", "of", "asked_count", "kept_count")}, "files": files}
 
 
 def proof_page(text: str) -> str:
