@@ -10,7 +10,7 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
-from layout.documents import Movement, Settings
+from layout.documents import Settings
 from layout.file_names import CUTTING_FILES, FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
@@ -19,7 +19,7 @@ from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import HEARING_FILES, plucks_response, sound_response
+from service.api.hearings import HEARING_FILES, Heard, plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
@@ -128,13 +128,13 @@ def _add_hearings(routes: Blueprint, desk: LayoutDesk, shelf: HearingShelf) -> N
     @describes(hearings.LAYOUT_SOUND)
     @open_on_loopback(Scope.ORDER)
     def give_sound(fingerprint: str) -> Response:
-        return sound_response(shelf, *_heard(_found(desk, fingerprint)), request)
+        return sound_response(shelf, _heard(_found(desk, fingerprint)), request)
 
     @routes.get("/<fingerprint>/hearing.mid")
     @describes(hearings.LAYOUT_PLUCKS)
     @open_on_loopback(Scope.ORDER)
     def give_plucks(fingerprint: str) -> Response:
-        return plucks_response(shelf, *_heard(_found(desk, fingerprint)), request)
+        return plucks_response(shelf, _heard(_found(desk, fingerprint)), request)
 
 
 class LayoutTeller:
@@ -246,10 +246,9 @@ class LayoutTeller:
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
 
 
-def _heard(kept: KeptLayout) -> tuple[tuple[bytes, Movement], str]:
-    """What a layout is heard from, and the name of its layout.json."""
+def _heard(kept: KeptLayout) -> Heard:
     name = download_name(_named(kept, not_good=False), "layout.json")
-    return (kept.files["layout.json"], kept.inputs.read().movement), name
+    return Heard(layout_json=kept.files["layout.json"], movement=kept.inputs.read().movement, layout_name=name)
 
 
 def _named(kept: KeptLayout, *, not_good: bool) -> NamedDisc:

@@ -1,6 +1,7 @@
 """/v1/proofs: what a customer with a signed link sees of an order, and says about it."""
 
 from collections.abc import Mapping
+from functools import partial
 from typing import Any
 
 from flask import Blueprint, Response, request
@@ -75,19 +76,20 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
 
 
 def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: HearingShelf) -> None:
+    def plan_of(text: str) -> PlanView:
+        return proof_shown(parts, proof_of(links, text))[1]
+
     @routes.get("/<text>/files/<int:disc>/hearing.wav")
     @describes(hearings.PROOF_SOUND)
     @open_but_counted
     def give_sound(text: str, disc: int) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
-        return sound_response(shelf, *heard_of(parts, plan, disc), request)
+        return sound_response(shelf, heard_of(parts, partial(plan_of, text), disc), request)
 
     @routes.get("/<text>/files/<int:disc>/hearing.mid")
     @describes(hearings.PROOF_PLUCKS)
     @open_but_counted
     def give_plucks(text: str, disc: int) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
-        return plucks_response(shelf, *heard_of(parts, plan, disc), request)
+        return plucks_response(shelf, heard_of(parts, partial(plan_of, text), disc), request)
 
 
 def _disc_shown(text: str, disc: Mapping[str, Any]) -> dict[str, Any]:
