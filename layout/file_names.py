@@ -15,7 +15,13 @@ FILES = (
     "report.json",
     "making.json",
 )
+TOLD_FILES = ("layout.json", "report.json")  # what a layout tells without a plan of how it is cut
 PLAN_FILE, PARTS_FILE = "sheets.json", "parts.csv"  # of a sheet job, beside a drawing for each sheet
+
+
+def files_given(cutter: Cutter, *, cutting: bool) -> tuple[str, ...]:
+    """The names of the files of a layout for this cutter, or those alone by which nothing is cut."""
+    return tuple(name for name in files_for(cutter) if cutting or name not in CUTTING_FILES)
 
 
 def files_for(cutter: Cutter) -> tuple[str, ...]:

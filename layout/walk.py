@@ -21,7 +21,7 @@ from layout.cut.plan import CutPlan
 from layout.cut.wording import Words
 from layout.documents import Cutter, Movement, Settings
 from layout.errors import DocumentError, Problem
-from layout.file_names import CUTTING_FILES, files_for
+from layout.file_names import files_given
 from layout.limits import limits_told
 from layout.making import Making, making_of
 from layout.mechanics.projection import pattern_of
@@ -70,8 +70,6 @@ _WRITERS: dict[str, Callable[[_Planned], bytes]] = {
     "hits.csv": lambda one: write_hits(one.plan, one.laid_out.disc),
     "press.nc": lambda one: write_press_program(one.plan, one.laid_out.disc),
     "work-sheet.pdf": lambda one: write_work_sheet(one.plan, one.laid_out, one.making),
-    "layout.json": lambda one: write_layout_json(one.laid_out, despite_findings=one.plan.not_good),
-    "report.json": lambda one: write_report(one.laid_out),
     "making.json": lambda one: write_making(
         one.making,
         one.laid_out.fingerprint,
@@ -232,8 +230,7 @@ def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, byt
         not_good: A person's reason to have the cutting files although an error-level finding
             stands; they are then marked NOT GOOD TO CUT. Ignored where none stands.
     """
-    made = files_for(laid_out.disc.cutter)
-    given = made if laid_out.good_to_cut or not_good else [name for name in made if name not in CUTTING_FILES]
+    given = files_given(laid_out.disc.cutter, cutting=bool(laid_out.good_to_cut or not_good))
     plan = plan_cuts(
         laid_out.disc,
         title=laid_out.title,
@@ -243,7 +240,22 @@ def files_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, byt
         order_number=laid_out.order_number,
     )
     planned = _Planned(laid_out=laid_out, plan=plan, making=making_of(laid_out.disc, plan))
-    return {name: _WRITERS[name](planned) for name in given}
+    told = told_of(laid_out, not_good=not_good)
+    return {name: told[name] if name in told else _WRITERS[name](planned) for name in given}
+
+
+def told_of(laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:
+    """layout.json and report.json of a layout, as `files_of` gives them: they need no plan of how it is cut.
+
+    Args:
+        laid_out: The layout.
+        not_good: As for `files_of`; layout.json names it.
+    """
+    despite_findings = None if laid_out.good_to_cut else not_good
+    return {
+        "layout.json": write_layout_json(laid_out, despite_findings=despite_findings),
+        "report.json": write_report(laid_out),
+    }
 
 
 def check_drawing(dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:

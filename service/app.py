@@ -112,7 +112,7 @@ def _routes_of_layouts(planner: AnyPlanner, desk: LayoutDesk, parts: Parts, shel
 def _routes_of_orders(parts: Parts, queue: Queue, shelf: HearingShelf) -> Iterator[Blueprint]:
     """What is kept, and who may see it."""
     links = _links(parts)
-    yield order_routes(parts, queue.send)
+    yield order_routes(parts, queue.send, shelf)
     yield decision_routes(parts, queue.send, links)
     yield order_file_routes(parts, shelf)
     yield run_routes(parts)

@@ -100,6 +100,9 @@ class Planner(Protocol[LayoutT]):
     def files_of(self, laid_out: LayoutT, *, not_good: str | None = None) -> dict[str, bytes]:
         """The files by name, without the cutting files where they are kept back."""
 
+    def told_of(self, laid_out: LayoutT, *, not_good: str | None = None) -> dict[str, bytes]:
+        """Those of the same files that need no plan of how it is cut."""
+
     def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
         """What the disc of a drawing plays and what is wrong with it."""
 
@@ -134,6 +137,11 @@ class TheWalk:
         """As `layout.walk` does."""
         files: dict[str, bytes] = _walk().files_of(laid_out, not_good=not_good)
         return files
+
+    def told_of(self, laid_out: Any, *, not_good: str | None = None) -> dict[str, bytes]:
+        """As `layout.walk` does."""
+        told: dict[str, bytes] = _walk().told_of(laid_out, not_good=not_good)
+        return told
 
     def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
         """As `layout.walk` does."""

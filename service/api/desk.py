@@ -1,15 +1,29 @@
-"""The desk where layouts are asked for: computed once, then kept for their links."""
+"""The desk where layouts are asked for: computed once, then kept for their links.
+
+What a layout tells is written at once, its files when the first of them is asked for: planning how a disc is cut and
+writing its drawings takes longer than finding it, and most discs on the way to the right one are only looked at. The
+files of a layout that no process has at hand are made by laying it out again, and given only where that comes to the
+layout that was told, byte for byte. A search that time stopped need not, so that its files are all made at once.
+"""
 
 import logging
+import threading
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import replace
+from itertools import chain
 
+from layout.file_names import files_given
 from service.api.layout_cache import KeptLayout, LayoutCache
+from service.api.problems import ProblemError
 from service.documents import Inputs
 from service.limits import Limits
 from service.planner import AnyPlanner, Layout
 
 log = logging.getLogger("discwright")
+
+LOCKS = 16  # more than a process has threads that compute
+AT_HAND = 4  # sets of discs; a megabyte or two each
 
 
 class LayoutDesk:
@@ -34,7 +48,8 @@ class LayoutDesk:
         self._most_s = (limits or Limits()).search_s
         self._clock = clock
         self._cache = cache
-        self._latest: tuple[Layout, ...] = ()  # to mark the files of layouts just made without making them again
+        self._at_hand: tuple[tuple[Layout, ...], ...] = ()  # so that files of what was just made are soon there
+        self._making = tuple(threading.Lock() for _ in range(LOCKS))  # so that two who ask at a time make them once
 
     @property
     def program(self) -> str:
@@ -79,14 +94,62 @@ class LayoutDesk:
         own = None if owner_id is None else self._cache.get(fingerprint, owner_id)
         return own or self._cache.get(fingerprint)
 
-    def marked_files(self, kept: KeptLayout, reason: str) -> dict[str, bytes]:
-        """All files of a layout that is not good to cut, marked so and with the reason why they are given."""
-        latest = {layout.fingerprint: layout for layout in self._latest}
-        if kept.fingerprint not in latest:
-            latest = {layout.fingerprint: layout for layout in self._compute(kept.inputs)}
-        return self._planner.files_of(latest[kept.fingerprint], not_good=reason)
+    def names_given(self, kept: KeptLayout, reason: str | None) -> tuple[str, ...]:
+        """The names of the files that are given, without the cutting files where they are kept back.
+
+        Args:
+            kept: The layout.
+            reason: Why cutting files shall be given although an error-level finding stands, or None.
+        """
+        return files_given(kept.inputs.read().cutter, cutting=kept.good_to_cut or reason is not None)
+
+    def told(self, kept: KeptLayout, reason: str | None) -> Mapping[str, bytes]:
+        """layout.json and report.json, and perhaps more; marked where an error-level finding stands and with a reason.
+
+        Raises:
+            ProblemError: It cannot be made again as it was told.
+        """
+        if reason is None or kept.good_to_cut:
+            return kept.files
+        return self._planner.told_of(self._laid_out(kept), not_good=reason)
+
+    def files(self, kept: KeptLayout, reason: str | None) -> Mapping[str, bytes]:
+        """All files that are given, made where they are not kept.
+
+        Those of a layout that is not good to cut are marked so, with the reason why they are given, and not kept.
+
+        Raises:
+            ProblemError: It cannot be made again as it was told.
+            OSError: The disk is full, or the folder was taken away.
+        """
+        if reason is not None and not kept.good_to_cut:
+            return self._planner.files_of(self._laid_out(kept), not_good=reason)
+        if kept.has_all_files:
+            return kept.files
+        with self._making[hash(kept.fingerprint) % LOCKS]:
+            other = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made them
+            if other is not None and other.has_all_files and other.inputs == kept.inputs:
+                return other.files
+            files = self._planner.files_of(self._laid_out(kept))
+            self._cache.put(replace(kept, files=files))
+            return files
+
+    def _laid_out(self, kept: KeptLayout) -> Layout:
+        """A kept layout with all that is known of it: at hand, or laid out again."""
+        for laid_out in chain(chain.from_iterable(self._at_hand), self._anew(kept.inputs)):
+            is_it = laid_out.fingerprint == kept.fingerprint
+            if is_it and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
+                return laid_out
+        log.warning("laid out again, it is another disc, and kept no longer: %s", kept.fingerprint)
+        self._cache.let_go(kept.fingerprint, kept.owner_id)
+        raise ProblemError(
+            name="layout-unknown",
+            detail=f"for its files {kept.fingerprint} was laid out again and came to another disc, so that it is kept "
+            "no longer; post the tune again",
+        )
 
     def _kept(self, laid_out: Layout, inputs: Inputs, owner_id: str | None) -> KeptLayout:
+        may_differ = laid_out.stopped == "time"
         return KeptLayout(
             fingerprint=laid_out.fingerprint,
             title=laid_out.title,
@@ -94,7 +157,7 @@ class LayoutDesk:
             disc_count=laid_out.disc_count,
             good_to_cut=laid_out.good_to_cut,
             inputs=inputs,
-            files=self._planner.files_of(laid_out),
+            files=self._planner.files_of(laid_out) if may_differ else self._planner.told_of(laid_out),
             owner_id=owner_id,
         )
 
@@ -104,8 +167,12 @@ class LayoutDesk:
         computed: tuple[Layout, ...] = self._planner.lay_out_discs(
             inputs.tune, *documents, self._clock, most_s=self._most_s
         )
-        self._latest = computed  # what threads beside this one compute may stand there next
+        self._at_hand = (computed, *self._at_hand)[:AT_HAND]  # one that another thread adds meanwhile may be lost
         return computed
+
+    def _anew(self, inputs: Inputs) -> Iterator[Layout]:
+        """The layouts of these inputs, computed when the first is asked for."""
+        yield from self._compute(inputs)
 
     def _cut_short(self, inputs: Inputs, computed: tuple[Layout, ...]) -> bool:
         """Whether the service's limit, and not the settings', has stopped the search for these layouts."""

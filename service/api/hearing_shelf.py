@@ -1,8 +1,8 @@
 """Sounds kept as files: a bounded folder beside the kept layouts, so that parts of one are cheap to give.
 
-A file's name holds a digest of all that decides its bytes, the program among it, and then the bytes' own. It is written
-beside its name and then renamed. Any number of processes may use the folder; two that make the same at a time
-make the same bytes.
+A file's name holds a digest of the layout, so that its sounds can be found and removed; one of all that decides its
+bytes, the program among it; and then the bytes' own. It is written beside its name and then renamed. Any number of
+processes may use the folder; two that make the same at a time make the same bytes.
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ import os
 import tempfile
 import threading
 import time
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, BinaryIO
@@ -31,15 +31,17 @@ if TYPE_CHECKING:
 
 FOLDER = "hearings"
 SUFFIX = ".sound"
+DIGITS = 32  # of a digest in a name: 128 bits, which no chance repeats
 PIECE_BYTES = 64 * 1024  # bytes read at a time; of no consequence
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class KeptSound:
-    """A file of the shelf: its SHA-256 in hex digits, and its size."""
+    """A file of the shelf: its SHA-256 in hex digits, its size, and whether it was made for who asked just now."""
 
     digest: str
     byte_count: int
+    is_new: bool = False
 
 
 class _Hashing:
@@ -99,21 +101,31 @@ class HearingShelf:
         [path] = list(self._folder.glob(f"*-{digest}{SUFFIX}"))[:1] or [self._folder / f"{digest}{SUFFIX}"]
         return _pieces(path.open("rb"), start, end)
 
+    def forget(self, layout_digests: Iterable[str]) -> None:
+        """Remove every sound of these layouts.
+
+        Args:
+            layout_digests: The SHA-256 of each layout's JSON, in hex digits.
+        """
+        for digest in layout_digests:
+            for path in self._folder.glob(f"{digest[:DIGITS]}-*{SUFFIX}"):
+                path.unlink(missing_ok=True)
+
     def _key(self, layout_json: bytes, movement: Movement, query: PlucksQuery) -> str:
         parts = {
             "program": self._program,
-            "layout": hashlib.sha256(layout_json).hexdigest(),
             "movement": movement.model_dump(mode="json"),
             "kind": type(query).__name__,
             "query": query.model_dump(mode="json"),
         }
-        return hashlib.sha256(json.dumps(parts, sort_keys=True).encode()).hexdigest()[:32]
+        how = hashlib.sha256(json.dumps(parts, sort_keys=True).encode()).hexdigest()
+        return f"{hashlib.sha256(layout_json).hexdigest()[:DIGITS]}-{how[:DIGITS]}"
 
     def _found(self, key: str) -> KeptSound | None:
         for path in self._folder.glob(f"{key}-*{SUFFIX}"):
             with contextlib.suppress(FileNotFoundError):  # another process has just let it go
                 os.utime(path)
-                return KeptSound(digest=path.stem.partition("-")[2], byte_count=path.stat().st_size)
+                return KeptSound(digest=path.stem.rpartition("-")[2], byte_count=path.stat().st_size)
         return None
 
     def _made(self, key: str, layout_json: bytes, movement: Movement, query: PlucksQuery) -> KeptSound:
@@ -139,7 +151,7 @@ class HearingShelf:
             Path(part).unlink(missing_ok=True)
             raise
         self._let_go(kept)
-        return KeptSound(digest=digest, byte_count=kept.stat().st_size)
+        return KeptSound(digest=digest, byte_count=kept.stat().st_size, is_new=True)
 
     def _let_go(self, keep: Path) -> None:
         """Remove what nobody has heard for long, the least recent where all are too large, and abandoned parts."""

@@ -1,5 +1,9 @@
 """A disc as it sounds, given as a file: whole, or the part of it that a player asks for."""
 
+import hashlib
+from collections.abc import Callable
+from dataclasses import dataclass
+
 from flask import Request, Response
 
 from layout.documents import Movement
@@ -9,16 +13,34 @@ from service.api.request_models import read_arguments
 from service.api.serving import Served, served
 from service.media_types import MIDI_MEDIA_TYPE, WAV_MEDIA_TYPE
 
+HEARING_FILES = ("hearing.wav", "hearing.mid")  # to be had of every disc; made when asked for
 LAYOUT_ENDING = "_layout.json"
 
 
-def sound_response(shelf: HearingShelf, heard: tuple[bytes, Movement], layout_name: str, asked: Request) -> Response:
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Heard:
+    """What a disc is heard from.
+
+    Attributes:
+        layout_json: Its layout.
+        movement: The movement it is for.
+        layout_name: The name under which its layout.json is saved; the sound's begins alike.
+        look_again: Raises what tells that the disc is no longer there, for it may have been deleted while its sound was
+            made; None where nobody deletes it.
+    """
+
+    layout_json: bytes
+    movement: Movement
+    layout_name: str
+    look_again: Callable[[], object] | None = None
+
+
+def sound_response(shelf: HearingShelf, heard: Heard, asked: Request) -> Response:
     """hearing.wav of a layout, as the query asks.
 
     Args:
         shelf: Keeps sounds.
-        heard: The layout's JSON, and its movement.
-        layout_name: The name under which its layout.json is saved; the sound's begins alike.
+        heard: What it is made from.
         asked: The request.
 
     Raises:
@@ -26,20 +48,24 @@ def sound_response(shelf: HearingShelf, heard: tuple[bytes, Movement], layout_na
         DocumentError: A turn of a winding is asked for that the movement does not state.
     """
     query = read_arguments(asked, SoundQuery)
-    return _response(shelf, heard, query, (_saved_as(layout_name, query, ".wav"), WAV_MEDIA_TYPE), asked)
+    return _response(shelf, heard, query, (_saved_as(heard.layout_name, query, ".wav"), WAV_MEDIA_TYPE), asked)
 
 
-def plucks_response(shelf: HearingShelf, heard: tuple[bytes, Movement], layout_name: str, asked: Request) -> Response:
+def plucks_response(shelf: HearingShelf, heard: Heard, asked: Request) -> Response:
     """hearing.mid of a layout; as `sound_response`."""
     query = read_arguments(asked, PlucksQuery)
-    return _response(shelf, heard, query, (_saved_as(layout_name, query, ".mid"), MIDI_MEDIA_TYPE), asked)
+    return _response(shelf, heard, query, (_saved_as(heard.layout_name, query, ".mid"), MIDI_MEDIA_TYPE), asked)
 
 
-def _response(
-    shelf: HearingShelf, heard: tuple[bytes, Movement], query: PlucksQuery, told: tuple[str, str], asked: Request
-) -> Response:
+def _response(shelf: HearingShelf, heard: Heard, query: PlucksQuery, told: tuple[str, str], asked: Request) -> Response:
     saved_as, media_type = told
-    kept = shelf.sound(*heard, query)
+    kept = shelf.sound(heard.layout_json, heard.movement, query)
+    if kept.is_new and heard.look_again is not None:
+        try:
+            heard.look_again()
+        except Exception:
+            shelf.forget([hashlib.sha256(heard.layout_json).hexdigest()])
+            raise
     file = Served(
         digest=kept.digest,
         byte_count=kept.byte_count,

@@ -1,9 +1,10 @@
 """Layouts kept for their links: a bounded folder that all workers of the service share.
 
 A layout is one file, a ZIP archive of its inputs and its files. It is written beside its name and then
-renamed, so that no worker ever sees half of one. A look at a layout renews the time of its file; where
-there are too many, the oldest go. The file's name holds a digest of the program, so that another version
-never gives out what an earlier one made, and one of the owner: what was laid out for one is not there for another.
+renamed, so that no worker ever sees half of one; a layout that told of itself alone gets its files in the same way.
+A look at a layout renews the time of its file; where there are too many, the oldest go. The file's name holds a
+digest of the program, so that another version never gives out what an earlier one made, and one of the owner: what
+was laid out for one is not there for another.
 """
 
 import contextlib
@@ -22,6 +23,7 @@ from importlib.resources import files
 from importlib.resources.abc import Traversable
 from pathlib import Path
 
+from layout.file_names import TOLD_FILES
 from service.documents import Inputs, Shipped, Source, Written
 from service.settings import ServiceSettings, SettingsError
 
@@ -43,7 +45,7 @@ class KeptLayout:
         disc_count: How many discs the tune is cut into.
         good_to_cut: Whether no error-level finding stands.
         inputs: What it was made from.
-        files: Its files by name; without the cutting files where they are kept back.
+        files: Its files by name; TOLD_FILES alone until another is asked for.
         owner_id: Whose it is, and no other's to see; None for nobody's in particular.
     """
 
@@ -55,6 +57,11 @@ class KeptLayout:
     inputs: Inputs
     files: Mapping[str, bytes]
     owner_id: str | None = None
+
+    @property
+    def has_all_files(self) -> bool:
+        """Whether its files are made, and not what it tells alone."""
+        return not set(self.files) <= set(TOLD_FILES)
 
     @property
     def part(self) -> str:
@@ -116,6 +123,10 @@ class LayoutCache:
             Path(part).unlink(missing_ok=True)
             raise
         self._let_go(keep=self._path(layout.fingerprint, layout.owner_id), taken_bytes=len(packed))
+
+    def let_go(self, fingerprint: str, owner_id: str | None = None) -> None:
+        """Keep a layout no longer; there need not be one."""
+        self._path(fingerprint, owner_id).unlink(missing_ok=True)
 
     def _path(self, fingerprint: str, owner_id: str | None = None) -> Path:
         # A digest of the owner's id, which the folder's own user alone may list: no id becomes part of a path.

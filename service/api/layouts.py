@@ -3,15 +3,15 @@
 import hashlib
 import json
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import replace
 from typing import Any
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
-from layout.documents import Movement, Settings
-from layout.file_names import CUTTING_FILES, FILES, files_for
+from layout.documents import Settings
+from layout.file_names import CUTTING_FILES, FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
@@ -19,7 +19,7 @@ from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import plucks_response, sound_response
+from service.api.hearings import HEARING_FILES, Heard, plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
@@ -128,13 +128,13 @@ def _add_hearings(routes: Blueprint, desk: LayoutDesk, shelf: HearingShelf) -> N
     @describes(hearings.LAYOUT_SOUND)
     @open_on_loopback(Scope.ORDER)
     def give_sound(fingerprint: str) -> Response:
-        return sound_response(shelf, *_heard(_found(desk, fingerprint)), request)
+        return sound_response(shelf, _heard(_found(desk, fingerprint)), request)
 
     @routes.get("/<fingerprint>/hearing.mid")
     @describes(hearings.LAYOUT_PLUCKS)
     @open_on_loopback(Scope.ORDER)
     def give_plucks(fingerprint: str) -> Response:
-        return plucks_response(shelf, *_heard(_found(desk, fingerprint)), request)
+        return plucks_response(shelf, _heard(_found(desk, fingerprint)), request)
 
 
 class LayoutTeller:
@@ -187,7 +187,7 @@ class LayoutTeller:
             if reason is None and not kept.good_to_cut:
                 raise _kept_back(kept, CUTTING_FILES[0])
             named = _named(kept, not_good=not kept.good_to_cut)
-            for file_name, content in self._files(kept, reason).items():
+            for file_name, content in self._desk.files(kept, reason).items():
                 packed[f"{kept.disc_number}/{download_name(named, file_name)}"] = content
         response = Response(archive_of(packed), content_type=ZIP_MEDIA_TYPE)
         first = _named(discs[0], not_good=not all(kept.good_to_cut for kept in discs))
@@ -203,29 +203,30 @@ class LayoutTeller:
         return response
 
     def _told(self, kept: KeptLayout, reason: str | None) -> dict[str, Any]:
-        files = self._files(kept, reason)
+        names = self._desk.names_given(kept, reason)
         return {
             "fingerprint": kept.fingerprint,
             "title": kept.title,
             "disc": {"number": kept.disc_number, "of": kept.disc_count},
             "good_to_cut": kept.good_to_cut,
-            "links": {name: self.address(kept, name, reason) for name in FILES if name in files},
-            "layout": json.loads(files["layout.json"]),
+            "links": {name: self.address(kept, name, reason) for name in names}
+            | {name: self.address(kept, name, None) for name in HEARING_FILES},
+            "layout": json.loads(self._desk.told(kept, reason)["layout.json"]),
         }
 
-    def _files(self, kept: KeptLayout, reason: str | None) -> Mapping[str, bytes]:
-        return kept.files if reason is None or kept.good_to_cut else self._desk.marked_files(kept, reason)
-
     def file(self, kept: KeptLayout, file_name: str, reason: str | None) -> Response:
-        """One of a layout's files.
+        """One of a layout's files, made if it was not yet; nothing of it where the client says that it has it.
 
         Raises:
-            ProblemError: It is a cutting file, and an error-level finding stands, and no reason is given.
+            ProblemError: It is a cutting file, and an error-level finding stands, and no reason is given; or it cannot
+                be made again.
         """
         marked = reason is not None and not kept.good_to_cut
         if file_name in CUTTING_FILES and not kept.good_to_cut and not marked:
             raise _kept_back(kept, file_name)
-        response = Response(self._files(kept, reason)[file_name], content_type=MEDIA_TYPES[file_name])
+        tag = self._tag(kept, file_name, reason)
+        content = b"" if request.if_none_match.contains(tag) else self._content(kept, file_name, reason)
+        response = Response(content, content_type=MEDIA_TYPES[file_name])
         is_picture = file_name == "disc.svg"
         if is_picture:
             response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
@@ -233,18 +234,21 @@ class LayoutTeller:
             _named(kept, not_good=marked), file_name, how="inline" if is_picture else "attachment"
         )
         response.headers["Cache-Control"] = f"private, max-age={self._limits.file_max_age_s}, immutable"
-        response.set_etag(self._tag(kept, file_name, reason))
+        response.set_etag(tag)
         return response
+
+    def _content(self, kept: KeptLayout, file_name: str, reason: str | None) -> bytes:
+        files = self._desk.told if file_name in TOLD_FILES else self._desk.files
+        return files(kept, reason)[file_name]
 
     def _tag(self, kept: KeptLayout, what: str, reason: str | None) -> str:
         mark = "" if kept.good_to_cut or reason is None else "-" + hashlib.sha256(reason.encode()).hexdigest()[:16]
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
 
 
-def _heard(kept: KeptLayout) -> tuple[tuple[bytes, Movement], str]:
-    """What a layout is heard from, and the name of its layout.json."""
+def _heard(kept: KeptLayout) -> Heard:
     name = download_name(_named(kept, not_good=False), "layout.json")
-    return (kept.files["layout.json"], kept.inputs.read().movement), name
+    return Heard(layout_json=kept.files["layout.json"], movement=kept.inputs.read().movement, layout_name=name)
 
 
 def _named(kept: KeptLayout, *, not_good: bool) -> NamedDisc:

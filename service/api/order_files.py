@@ -1,15 +1,18 @@
 """The files of an order's plans: previews before release, cutting files after it."""
 
+from collections.abc import Callable
+from functools import partial
+
 from flask import Blueprint, Request, Response, request
 
-from layout.documents import Movement, read_movement
+from layout.documents import read_movement
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES
 from service.api.asking import needs
 from service.api.describing import describes
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import plucks_response, sound_response
+from service.api.hearings import Heard, plucks_response, sound_response
 from service.api.models.orders import MOST_REVISION, FileQuery
 from service.api.operations import hearings, orders
 from service.api.order_answers import order_address
@@ -47,27 +50,38 @@ def order_file_routes(parts: Parts, shelf: HearingShelf) -> Blueprint:
     @describes(hearings.ORDER_SOUND)
     @needs(Scope.READ)
     def give_sound(asker: Asker, order_id: str, revision: int, disc: int) -> Response:
-        return sound_response(shelf, *heard_of(parts, plan_of(asker, order_id, revision), disc), request)
+        return sound_response(shelf, heard_of(parts, partial(plan_of, asker, order_id, revision), disc), request)
 
     @routes.get("/<int:revision>/files/<int:disc>/hearing.mid")
     @describes(hearings.ORDER_PLUCKS)
     @needs(Scope.READ)
     def give_plucks(asker: Asker, order_id: str, revision: int, disc: int) -> Response:
-        return plucks_response(shelf, *heard_of(parts, plan_of(asker, order_id, revision), disc), request)
+        return plucks_response(shelf, heard_of(parts, partial(plan_of, asker, order_id, revision), disc), request)
 
     return routes
 
 
-def heard_of(parts: Parts, plan: PlanView | None, disc: int) -> tuple[tuple[bytes, Movement], str]:
-    """What a disc of a plan is heard from, as it was planned, and the name its layout.json is saved by.
+def heard_of(parts: Parts, find_plan: Callable[[], PlanView | None], disc: int) -> Heard:
+    """What a disc of a plan is heard from, as it was planned.
+
+    Args:
+        parts: Where its files are.
+        find_plan: Gives the plan; called again when the sound is made.
+        disc: Which disc, from 1.
 
     Raises:
         ProblemError: The plan has no such disc.
         StoreError: A file cannot be read.
     """
+    plan = find_plan()
     file = file_of(plan, disc, "layout.json")
     digest = plan.inputs["movement"]["sha256"] if plan is not None else ""
-    return (parts.files.read(file.sha256), read_movement(parts.files.read(digest))), file.saved_as
+    return Heard(
+        layout_json=parts.files.read(file.sha256),
+        movement=read_movement(parts.files.read(digest)),
+        layout_name=file.saved_as,
+        look_again=lambda: file_of(find_plan(), disc, "layout.json"),
+    )
 
 
 def file_of(plan: PlanView | None, disc: int, name: str) -> FileView:

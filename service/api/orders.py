@@ -13,6 +13,7 @@ from service.api.answers import json_response
 from service.api.asking import needs
 from service.api.cursors import Cursors
 from service.api.describing import describes
+from service.api.hearing_shelf import HearingShelf
 from service.api.models.orders import MOST_WAIT_S, OrderBody, OrdersQuery
 from service.api.once import once
 from service.api.operations import orders
@@ -25,7 +26,7 @@ from service.api.stopping import stopping
 from service.api.waiting_room import waiting_room
 from service.orders.asked import AskedRepeat
 from service.orders.erasing import erase_order
-from service.orders.finding import Sought, find_order, list_orders
+from service.orders.finding import Sought, find_order, layouts_of, list_orders
 from service.orders.placing import place_order
 from service.orders.repeating import repeat_order
 from service.orders.states import State
@@ -39,12 +40,13 @@ LOOKS_EVERY_S = 0.25  # s; how often a waiting request looks, four cheap reads a
 Send = Callable[[str], object]  # hands an order's id to the queue
 
 
-def order_routes(parts: Parts, send: Send) -> Blueprint:
+def order_routes(parts: Parts, send: Send, shelf: HearingShelf) -> Blueprint:
     """The routes of orders.
 
     Args:
         parts: What orders are kept in.
         send: Tells the workers of an order, after it is kept.
+        shelf: Keeps sounds, which go with the order.
     """
     routes = Blueprint("orders", __name__, url_prefix="/v1/orders")
     desk = _OrderDesk(parts, send)
@@ -78,7 +80,11 @@ def order_routes(parts: Parts, send: Send) -> Blueprint:
     @describes(orders.ERASE)
     @needs(Scope.ORDER)
     def erase(asker: Asker, order_id: str) -> Response:
+        with parts.store.reading() as session:
+            layouts = layouts_of(session, asker, order_id)
+        shelf.forget(layouts)  # before, so that none is left where this ends in between
         order = erase_order(parts.store, parts.files, asker, order_id)
+        shelf.forget(layouts)  # and after, for what was made of it meanwhile
         return json_response(order_told(order))
 
     return routes

@@ -1,5 +1,9 @@
 """/v1/proofs: what a customer with a signed link sees of an order, and says about it."""
 
+from collections.abc import Mapping
+from functools import partial
+from typing import Any
+
 from flask import Blueprint, Response, request
 
 from service.api.answers import json_response
@@ -7,7 +11,7 @@ from service.api.asking import open_but_counted
 from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import plucks_response, sound_response
+from service.api.hearings import HEARING_FILES, plucks_response, sound_response
 from service.api.models.proofs import VerdictBody
 from service.api.operations import hearings, proofs
 from service.api.order_files import file_of, file_response, heard_of
@@ -42,16 +46,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
                 "movement": {"id": order.movement_id, "revision": order.movement_revision},
                 "revision": plan.revision,
                 "waits_for_decision": waits_for_decision(order, proof),
-                "discs": [
-                    {
-                        "number": disc["number"],
-                        "of": disc["of"],
-                        "asked_count": disc["asked_count"],
-                        "kept_count": disc["kept_count"],
-                        "files": {name: f"{proof_address(text)}/files/{disc['number']}/{name}" for name in SHOWN},
-                    }
-                    for disc in plan.told["discs"]
-                ],
+                "discs": [_disc_shown(text, disc) for disc in plan.told["discs"]],
             }
         )
 
@@ -61,7 +56,9 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     def give(text: str, disc: int, name: str) -> Response:
         _, plan = proof_shown(parts, proof_of(links, text))
         if name not in SHOWN:
-            raise ProblemError(name="route-unknown", detail=f"a proof shows {', '.join(SHOWN)} alone")
+            raise ProblemError(
+                name="route-unknown", detail=f"a proof shows {', '.join((*SHOWN, *HEARING_FILES))} alone"
+            )
         return file_response(parts, file_of(plan, disc, name), request)
 
     @routes.post("/<text>/verdict")
@@ -79,19 +76,26 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
 
 
 def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: HearingShelf) -> None:
+    def plan_of(text: str) -> PlanView:
+        return proof_shown(parts, proof_of(links, text))[1]
+
     @routes.get("/<text>/files/<int:disc>/hearing.wav")
     @describes(hearings.PROOF_SOUND)
     @open_but_counted
     def give_sound(text: str, disc: int) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
-        return sound_response(shelf, *heard_of(parts, plan, disc), request)
+        return sound_response(shelf, heard_of(parts, partial(plan_of, text), disc), request)
 
     @routes.get("/<text>/files/<int:disc>/hearing.mid")
     @describes(hearings.PROOF_PLUCKS)
     @open_but_counted
     def give_plucks(text: str, disc: int) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
-        return plucks_response(shelf, *heard_of(parts, plan, disc), request)
+        return plucks_response(shelf, heard_of(parts, partial(plan_of, text), disc), request)
+
+
+def _disc_shown(text: str, disc: Mapping[str, Any]) -> dict[str, Any]:
+    base = f"{proof_address(text)}/files/{disc['number']}"
+    files = {name: f"{base}/{name}" for name in (*SHOWN, *HEARING_FILES)}
+    return {**{name: disc[name] for name in ("number", "of", "asked_count", "kept_count")}, "files": files}
 
 
 def proof_page(text: str) -> str:

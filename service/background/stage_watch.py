@@ -57,6 +57,11 @@ class TimedPlanner:
         with self._watch.timing("files"):
             return self._planner.files_of(laid_out, not_good=not_good)
 
+    def told_of(self, laid_out: Any, *, not_good: str | None = None) -> dict[str, bytes]:
+        """As the planner does."""
+        with self._watch.timing("files"):
+            return self._planner.told_of(laid_out, not_good=not_good)
+
     def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
         """As the planner does."""
         return self._planner.check_drawing(dxf, movement, cutter)

@@ -10,7 +10,7 @@ from service.access.asker import Asker
 from service.orders.faults import OrderUnknownError
 from service.orders.states import EventType
 from service.orders.views import EventView, OrderView, event_views, order_view
-from service.store.tables import Event, Order
+from service.store.tables import Event, Order, PlanFile
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -67,6 +67,17 @@ def find_order(session: Session, asker: Asker, order_id: str) -> OrderView:
         OrderUnknownError: There is none, or it is another's.
     """
     return order_view(session, order_row(session, asker, order_id))
+
+
+def layouts_of(session: Session, asker: Asker, order_id: str) -> list[str]:
+    """The digests of layout.json of every disc of every plan of an order.
+
+    Raises:
+        OrderUnknownError: There is no such order for the asker.
+    """
+    order = order_row(session, asker, order_id)
+    named = select(PlanFile.digest).where(PlanFile.order_id == order.id, PlanFile.name == "layout.json")
+    return list(session.scalars(named.order_by(PlanFile.revision, PlanFile.disc)))
 
 
 def list_orders(

@@ -9,7 +9,6 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
-from layout.file_names import files_for
 from service.access.scopes import Scope
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.desk import LayoutDesk
@@ -49,7 +48,7 @@ def disc_routes(desk: LayoutDesk) -> Blueprint:
                 detail=f"no layout is kept under {fingerprint[:64]!r}; make the disc again: the same tune, documents "
                 "and settings give the same layout and the same fingerprint",
             )
-        return disc_page(request, _shown(kept, reason))
+        return disc_page(request, _shown(desk, kept, reason))
 
     return routes
 
@@ -88,19 +87,17 @@ def disc_page(
     )
 
 
-def _shown(kept: KeptLayout, reason: str | None) -> ShownDisc:
+def _shown(desk: LayoutDesk, kept: KeptLayout, reason: str | None) -> ShownDisc:
     read = kept.inputs.read()
     given_despite = None if kept.good_to_cut else reason
     base = f"/v1/layouts/{kept.fingerprint}"
     asking = "" if given_despite is None else f"?{urlencode({'despite_findings': given_despite})}"
-    made = files_for(read.cutter)
-    given = made if given_despite is not None else [name for name in made if name in kept.files]
     return ShownDisc(
         layout=json.loads(kept.files["layout.json"]),
         report=json.loads(kept.files["report.json"]),
         movement=read.movement,
         cutter=read.cutter,
-        files={name: f"{base}/{name}{asking}" for name in given},
+        files={name: f"{base}/{name}{asking}" for name in desk.names_given(kept, reason)},
         hearing={of: f"{base}/hearing.wav?of={of}" for of in ("disc", "written")},
         despite_findings=given_despite,
         asks_reason=not kept.good_to_cut,

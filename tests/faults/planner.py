@@ -30,6 +30,7 @@ class QuietPlanner(FakePlanner):
 _PLANNER = QuietPlanner()
 fingerprint_of = _PLANNER.fingerprint_of
 files_of = _PLANNER.files_of
+told_of = _PLANNER.told_of
 check_drawing = _PLANNER.check_drawing
 
 

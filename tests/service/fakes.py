@@ -48,6 +48,9 @@ LASER_FILES = [
     *("work-sheet.pdf", "layout.json", "report.json", "making.json"),
 ]
 
+# What every layout's links have besides: made of it when it is asked for.
+HEARING_FILES = ["hearing.wav", "hearing.mid"]
+
 ALL_KEPT = {
     "note_count": 2,
     "kept_count": 2,
@@ -176,6 +179,7 @@ class FakePlanner:
     title: str = "Harvest Dance"
     needs_s: float = 0.0  # what a search takes that nothing stops
     laid_out_count: int = 0
+    files_count: int = 0  # how often all files of a disc were made
 
     def fingerprint_of(self, tune: bytes, movement: Any, cutter: Any, settings: Any, number: int = 1) -> str:
         seen = repr((tune, movement.id, cutter.id, settings, number))
@@ -224,10 +228,14 @@ class FakePlanner:
         if not laid_out.good_to_cut and not_good is None:
             names = ["record.dxf", "disc.svg", "work-sheet.pdf"]
         part = "" if laid_out.disc_count == 1 else f" {laid_out.disc_number}/{laid_out.disc_count}"
+        self.files_count += 1
         files = {name: f"{name} of {laid_out.title}{part}{mark}".encode() for name in names}
-        record = laid_out.record | {"despite_findings": not_good if mark else None}
-        told = {"layout.json": record, "report.json": REPORT, "making.json": MAKING}
-        return {**files, **{name: json.dumps(content).encode() for name, content in told.items()}}
+        return {**files, **self.told_of(laid_out, not_good=not_good), "making.json": json.dumps(MAKING).encode()}
+
+    def told_of(self, laid_out: FakeLayout, *, not_good: str | None = None) -> dict[str, bytes]:
+        record = laid_out.record | {"despite_findings": None if laid_out.good_to_cut else not_good}
+        told = {"layout.json": record, "report.json": REPORT}
+        return {name: json.dumps(content).encode() for name, content in told.items()}
 
     def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> FakeReading:
         good = all(finding.level is not Level.ERROR for finding in self.findings)

@@ -63,7 +63,10 @@ class LayoutAnswer(Part):
     title: str
     disc: DiscAnswer
     good_to_cut: bool
-    links: dict[str, str] = Field(description="where its files are, by name; those kept back are left out")
+    links: dict[str, str] = Field(
+        description="where its files are, by name, hearing.wav and hearing.mid among them, each made when it is asked "
+        "for; those kept back are left out"
+    )
     layout: LayoutRecord = Field(description="the record of the disc: notes, projections, findings")
 
 

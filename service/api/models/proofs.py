@@ -34,7 +34,9 @@ class ProofDiscAnswer(Part):
     of: int
     asked_count: int = Field(description="notes that the tune asks for")
     kept_count: int = Field(description="notes that the disc plays")
-    files: dict[str, str]
+    files: dict[str, str] = Field(
+        description="where its picture, its report, and hearing.wav and hearing.mid are, by name"
+    )
 
 
 class ProofAnswer(Part):

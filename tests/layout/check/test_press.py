@@ -9,6 +9,7 @@ from layout.check import Code, Level, check
 from layout.check.press import feet_stand_on_flat_metal, hits_fall_on_whole_metal, press_is_strong_enough
 from layout.cut.striking import hit_order
 from layout.mechanics.arrays import frozen_floats
+from layout.mechanics.hits import Hits
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PRESS, cutter_with, disc_of, movement_with
 
@@ -201,6 +202,23 @@ def test_a_foot_that_would_stand_on_a_tab_struck_later_is_no_finding() -> None:
     foot = {"tools/0/foot": {"length_mm": 7, "width_mm": 2}}
 
     assert feet_stand_on_flat_metal(struck({}, foot, [(1, 10.0), (1, 10.0 + apart_s)])) == []
+
+
+def test_feet_that_some_order_keeps_off_are_kept_off_by_the_order_struck_which_the_check_need_not_find(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    apart_s = 60 * 3.5 / (2 * math.pi * 50)
+    foot = {"tools/0/foot": {"length_mm": 7, "width_mm": 2}}
+    disc = struck({}, foot, [(1, 10.0 + apart_s * place) for place in range(6)])
+    standing, hit = disc.hits.feet_on_formed().T
+    place = np.argsort(disc.hits.order())
+    monkeypatch.setattr(Hits, "order", None)  # whoever asks for it, fails
+
+    findings = feet_stand_on_flat_metal(disc)
+
+    assert len(hit) == 5  # each stands behind the next
+    assert (place[hit] < place[standing]).all()
+    assert findings == []
 
 
 def test_without_a_foot_nothing_is_judged() -> None:

@@ -22,6 +22,7 @@ from tests.layout.hear.sounds import read_wav
 from tests.service.api.described import World
 from tests.service.conftest import parts_of
 from tests.service.fakes import MANY
+from tests.service.shop import TUNE
 
 
 def app_of(parts: Parts, limits: Limits | None = None) -> World:
@@ -68,6 +69,30 @@ def test_a_disc_is_given_as_sound_and_as_plucks(world: World, addresses: dict[st
     assert notes.note_num() == 4  # the small tune's
     assert "fernhollow-31-r1" in sound.headers["Content-Disposition"]
     assert sound.headers["Content-Disposition"].endswith('_as-played.wav"')
+
+
+def test_a_layout_and_a_proof_say_where_they_are_heard(world: World, addresses: dict[str, str]) -> None:
+    layout = get(world, addresses["layout"].removesuffix("/hearing")).json
+    proof = get(world, addresses["proof"].removesuffix("/files/1/hearing")).json
+    assert layout is not None
+    assert proof is not None
+
+    told = {"layout": layout["links"], "proof": proof["discs"][0]["files"]}
+
+    for whose, files in told.items():
+        for name in ("hearing.wav", "hearing.mid"):
+            assert files[name] == f"{addresses[whose]}{name.removeprefix('hearing')}"
+            assert get(world, files[name], Range="bytes=0-3").status_code == 206
+
+
+def test_a_layout_that_is_given_for_a_reason_is_heard_without_one(world: World) -> None:
+    settings = {"tune": (io.BytesIO(TUNE), "a.mid"), "settings": (io.BytesIO(b"{}"), "s.json")}
+    asked = "/v1/layouts?movement=tarnlight-17&despite_findings=trial"
+    made = world.http.post(asked, data=settings, headers=world.headers).get_json()
+
+    assert made["good_to_cut"] is False  # the demo tune is longer than its turn
+    assert "despite_findings" in made["links"]["disc.dxf"]
+    assert get(world, made["links"]["hearing.mid"]).status_code == 200
 
 
 def test_a_sound_is_the_same_to_the_byte_for_all_who_may_hear_it(world: World, addresses: dict[str, str]) -> None:
@@ -143,7 +168,7 @@ def test_a_sound_is_made_once(world: World, addresses: dict[str, str], monkeypat
 
     assert (first.status_code, again.status_code) == (200, 206)
     assert kept_in(world.parts) == kept
-    assert hashlib.sha256(first.data).hexdigest() in {path.stem.partition("-")[2] for path in kept}
+    assert hashlib.sha256(first.data).hexdigest() in {path.stem.rpartition("-")[2] for path in kept}
 
 
 def test_a_sound_longer_than_is_made_is_refused_but_not_its_plucks(world: World, addresses: dict[str, str]) -> None:

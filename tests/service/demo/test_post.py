@@ -41,7 +41,9 @@ class StandIn:
 
     address: str = ""
     movements: list[dict[str, object]] = field(default_factory=list)
-    links: dict[str, str] = field(default_factory=lambda: {"disc.dxf": "/files/1", "hits.csv": "/files/2"})
+    links: dict[str, str] = field(
+        default_factory=lambda: {"disc.dxf": "/files/1", "hits.csv": "/files/2", "hearing.wav": "/files/3"}
+    )
     refuses: str = ""
     posted: list[tuple[str, str, bytes]] = field(default_factory=list)
 
