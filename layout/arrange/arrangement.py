@@ -68,6 +68,21 @@ class Tried:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Transposed:
+    """A transposition, whatever the speed: what is known of its worth.
+
+    Attributes:
+        semitones: Added to every pitch.
+        kept: The most weight an arrangement found keeps; None where none was made, since its bound says enough.
+        bound: No arrangement at this transposition keeps more, at any speed searched; kept where that is proved.
+    """
+
+    semitones: int
+    kept: int | None
+    bound: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Load:
     """The moment at which the teeth load the disc most.
 
@@ -111,6 +126,8 @@ class Arrangement:
         lowest: Shape (notes of the score,). Which are the lowest.
         melody: Shape (notes of the score,). Which are the melody's.
         tried: The best transpositions and speeds, best first, at most five.
+        transpositions: Every transposition searched, the lowest first, but those at which rulings are known to be
+            impossible.
         load: The greatest load; None where the movement states no stiffness and lift, or nothing is plucked.
     """
 
@@ -132,4 +149,5 @@ class Arrangement:
     lowest: BoolArray
     melody: BoolArray
     tried: tuple[Tried, ...]
+    transpositions: tuple[Transposed, ...]
     load: Load | None

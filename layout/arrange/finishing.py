@@ -63,6 +63,7 @@ class Finishing:
             lowest=_marked(asked.notes, asked.weighed.lowest, self.score.note_count),
             melody=_marked(asked.notes, asked.weighed.melody, self.score.note_count),
             tried=self.found.tried,
+            transpositions=self.found.transpositions,
             load=greatest_load(self.movement, self.turning, track, planned_s),
         )
 

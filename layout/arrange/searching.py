@@ -10,7 +10,7 @@ import heapq
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
-from layout.arrange.arrangement import Stopped, Tried
+from layout.arrange.arrangement import Stopped, Transposed, Tried
 from layout.arrange.budget import LOOKS_TO_BEGIN, LOOKS_TO_POSE, Budget
 from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solved, Solving
@@ -38,6 +38,7 @@ class Found:
         kept: What they are worth together.
         bound: Nothing that was searched is worth more.
         tried: The best transpositions, each at its best speed, at most MOST_TOLD, best first.
+        transpositions: All of them, the lowest first, but those known to be impossible.
         stopped: What ended the search too early, if anything did.
     """
 
@@ -47,6 +48,7 @@ class Found:
     kept: int
     bound: int
     tried: tuple[Tried, ...]
+    transpositions: tuple[Transposed, ...]
     stopped: Stopped | None
 
 
@@ -239,7 +241,23 @@ def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: B
         kept=best.kept,
         bound=max(bound, best.kept),
         tried=tuple(list(told.values())[:MOST_TOLD]),
+        transpositions=_by_transposition([*finished, *left]),
         stopped=_what_stopped(best, budget) if bound > best.kept else None,
+    )
+
+
+def _by_transposition(known: Sequence[_Candidate]) -> tuple[Transposed, ...]:
+    """Each transposition with the most that any of its speeds keeps, and the most that any could keep."""
+    speeds: dict[int, list[_Candidate]] = {}
+    for candidate in known:
+        speeds.setdefault(candidate.way.semitones, []).append(candidate)
+    return tuple(
+        Transposed(
+            semitones=semitones,
+            kept=max((one.kept for one in speeds[semitones] if one.solved is not None), default=None),
+            bound=max(one.bound for one in speeds[semitones]),
+        )
+        for semitones in sorted(speeds)
     )
 
 

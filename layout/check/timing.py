@@ -8,11 +8,9 @@ from layout.arrange.arrangement import Arrangement
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import told_worth
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
-from layout.mechanics.tolerances import place_error
+from layout.mechanics.tolerances import ORDER_HEARD_MS, place_error
 from layout.place.disc import Disc
 
-# ms; which of two sounds came first is heard from about 20 ms on (Hirsh, JASA 31, 1959, p. 759).
-ORDER_HEARD_MS = 20.0
 # ms; below it the just noticeable difference of a moment is constant, 6 ms, above it a share of the time between
 # (Friberg and Sundberg, JASA 98, 1995, p. 2524, by its abstract): notes nearer than it are fast.
 FAST_BELOW_MS = 240.0

@@ -29,6 +29,9 @@ from layout.mechanics.star_wheel import contact_mm, depth_band_mm
 
 PlacedBy = ToleranceClass | Literal["position_tolerance_mm"]
 
+# ms; which of two sounds came first is heard from about 20 ms on (Hirsh, JASA 31, 1959, p. 759).
+ORDER_HEARD_MS = 20.0
+
 # ISO 9013: mm. Nominal sizes from one bound up to, but not including, the next; the sheet's thickness up to and
 # including its own. Laser cutting is in its scope from 0.5 to 32 mm of thickness; the rows above 3.15 mm are left out,
 # since no disc is that thick.

@@ -7,7 +7,7 @@ at its onset), the *bass* (lowest, and not highest) or *inner* (neither).
 
 from dataclasses import dataclass
 
-from layout.arrange.arrangement import LeftOutReason, Tried, Worth
+from layout.arrange.arrangement import LeftOutReason, Transposed, Tried, Worth
 from layout.mechanics.depth import DepthBand
 from layout.mechanics.net_section import MetalLeft
 from layout.mechanics.starting import Starting
@@ -175,6 +175,7 @@ class Report:
         extra_pluck_count: Plucks that repeat or double a note played already.
         worth: The weight kept, against the most that could be kept.
         tried: The best transpositions and speeds, best first, at most five.
+        transpositions: Every transposition searched that is not known to be impossible, the lowest first.
         worst_bars: At most five bars that lose the most weight, the greatest loss first, then by bar.
         tracks: The timing of every track used, the innermost first.
         metal_left: The least metal the openings leave; None where there are none.
@@ -194,6 +195,7 @@ class Report:
     extra_pluck_count: int
     worth: Worth
     tried: tuple[Tried, ...]
+    transpositions: tuple[Transposed, ...]
     worst_bars: tuple[BarLoss, ...]
     tracks: tuple[TrackTiming, ...]
     metal_left: MetalLeft | None

@@ -42,6 +42,7 @@ def report_on(score: Score, arrangement: Arrangement, disc: Disc) -> Report:
         extra_pluck_count=int(np.count_nonzero(arrangement.again_of != NO_NOTE)),
         worth=arrangement.worth,
         tried=arrangement.tried,
+        transpositions=arrangement.transpositions,
         worst_bars=worst_bars(score, arrangement, fates),
         tracks=timing_of(disc, arrangement),
         metal_left=disc.metal_left,

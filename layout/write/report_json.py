@@ -3,7 +3,7 @@
 import math
 from typing import Any
 
-from layout.arrange.arrangement import Tried, Worth
+from layout.arrange.arrangement import Transposed, Tried, Worth
 from layout.documents.making import NetSection
 from layout.documents.movement import Movement
 from layout.mechanics.depth import DepthBand
@@ -75,6 +75,7 @@ def report_record(laid_out: LaidOut) -> Record:
         "not_asked": dict(report.not_asked),
         "worst_bars": [_bar(bar) for bar in report.worst_bars],
         "tried": [_tried(tried) for tried in report.tried],
+        "transpositions": [_transposed(one) for one in report.transpositions],
         "load": None if report.load is None else _load(report.load),
         "no_load_because": report.no_load_because,
         "drive": _drive(report.drive, movement),
@@ -124,6 +125,10 @@ def _tried(tried: Tried) -> Record:
         "kept": tried.kept,
         "bound": tried.bound,
     }
+
+
+def _transposed(one: Transposed) -> Record:
+    return {"semitones": one.semitones, "kept": one.kept, "bound": one.bound}
 
 
 def _load(load: PeakLoad) -> Record:

@@ -21,6 +21,7 @@ from service.pages.disc_plots import plots_of
 from service.pages.disc_shown import ShownDisc
 from service.pages.disc_told import cautions_of, facts_of, files_of, findings_of, lost_of, not_asked_of, verdict_of
 from service.pages.page_views import gives_page
+from service.pages.plot_shapes import FRAME
 from service.pages.rendering import page
 
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
@@ -82,6 +83,7 @@ def disc_page(
         files=files_of(shown),
         findings=findings_of(shown.layout),
         cautions=cautions_of(shown),
+        frame=FRAME,
         plots=plots_of(shown.report, before_music_deg=movement.before_music_deg, revolution_s=movement.revolution_s),
         **beside,
     )

@@ -40,7 +40,7 @@ def new_disc_routes(parts: Parts) -> Blueprint:
         return page(
             request,
             "new_disc.html",
-            scripts=("new",),
+            scripts=("new", "movements"),
             movements=_choices(_documents(parts, "movement")),
             cutters=_choices(_documents(parts, "cutter")),
             default_cutter=shipped_cutter_ids()[0],

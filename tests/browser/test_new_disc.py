@@ -1,8 +1,9 @@
-"""From a tune to its disc, in the browser: dropped, chosen by keys, refused, given up, as several discs."""
+"""From a tune to its disc, in the browser: dropped, chosen by keys, refused, under way, given up, as several discs."""
 
-import json
+import math
 from collections.abc import Callable
 
+import pytest
 from playwright.sync_api import FilePayload, Page, Route
 
 from tests.browser.conftest import Window, wait_until
@@ -11,13 +12,15 @@ from tests.service.shop import TUNE
 READY = "#new-disc[data-ready]"
 FILE: FilePayload = {"name": "turning-day.mid", "mimeType": "audio/midi", "buffer": TUNE}
 NO_TUNE: FilePayload = {"name": "letter.mid", "mimeType": "audio/midi", "buffer": b"no tune, but a letter"}
-DROP = """([bytes, name]) => {
+DROP = """([bytes, names, place]) => {
   const held = new DataTransfer();
-  held.items.add(new File([new Uint8Array(bytes)], name, { type: "audio/midi" }));
+  for (const name of names) held.items.add(new File([new Uint8Array(bytes)], name, { type: "audio/midi" }));
   const told = { dataTransfer: held, bubbles: true, cancelable: true };
-  const place = document.querySelector("#drop");
-  for (const kind of ["dragenter", "dragover", "drop"]) place.dispatchEvent(new DragEvent(kind, told));
+  for (const kind of ["dragenter", "dragover", "drop"]) {
+    document.querySelector(place).dispatchEvent(new DragEvent(kind, told));
+  }
 }"""
+LATE_MS = 20_000  # how late a slow network brings an answer
 REFUSED = "the server responded with a status of 4"  # what the browser's own console says beside the page's words
 
 
@@ -42,11 +45,12 @@ def tab_to(page: Page, wanted: str) -> None:
     raise AssertionError(f"Tab never reaches {wanted}")
 
 
-def test_a_tune_that_is_dropped_leads_to_the_page_of_its_disc(window: Window) -> None:
+@pytest.mark.parametrize("place", ["#drop", "h1"])
+def test_a_tune_that_is_dropped_anywhere_leads_to_the_page_of_its_disc(window: Window, place: str) -> None:
     page = begun(window)
 
-    page.evaluate(DROP, [list(TUNE), "turning-day.mid"])
-    assert page.inner_text("#chosen").startswith("turning-day.mid")
+    page.evaluate(DROP, [list(TUNE), ["turning-day.mid"], place])
+    assert page.inner_text("#chosen") == f"turning-day.mid, {math.ceil(len(TUNE) / 102.4) / 10} KiB"  # to a tenth, up
     page.click("#send")
     page.wait_for_url("**/discs/*")
 
@@ -58,7 +62,7 @@ def test_what_is_no_tune_is_told_at_the_file_with_what_to_do_and_all_is_kept(win
     window.watch.bears.append(REFUSED)
     page = begun(window)
     page.set_input_files("#tune", NO_TUNE)
-    page.click("details.more summary")
+    page.click("#fold-lettering summary")
     page.fill("[id='title']", "Kept")
 
     page.click("#send")
@@ -104,6 +108,98 @@ def test_without_a_tune_nothing_is_sent_and_the_field_says_what_is_missing(windo
     assert asked == []
 
 
+def test_of_several_files_dropped_none_is_taken_and_the_field_says_so(window: Window) -> None:
+    page = begun(window)
+
+    page.evaluate(DROP, [list(TUNE), ["one.mid", "two.mid"], "#drop"])
+
+    assert page.inner_text("#tune-fault") == "2 files were dropped. Drop one."
+    assert page.inner_text("#chosen") == ""
+
+
+def test_a_file_that_is_too_large_or_empty_is_told_when_it_is_chosen_and_not_sent(window: Window) -> None:
+    page = begun(window)
+    asked: list[str] = []
+    page.on("request", lambda request: asked.append(request.url))
+    most = int(str(page.get_attribute("#new-disc", "data-most-bytes")))
+
+    page.set_input_files("#tune", {**FILE, "buffer": bytes(most + 1)})
+    assert page.inner_text("#tune-fault").endswith(f"{most // 1024} KiB are the most this service takes.")
+    page.click("#send")
+    assert page.get_attribute("#tune", "aria-invalid") == "true"
+    page.set_input_files("#tune", {**FILE, "buffer": b""})
+    assert page.inner_text("#tune-fault") == "turning-day.mid is empty. Choose another file."
+    page.set_input_files("#tune", {**FILE, "buffer": bytes(most)})
+
+    assert page.inner_text("#tune-fault") == ""
+    assert asked == []
+
+
+def test_while_it_is_under_way_the_stage_is_told_and_nothing_can_be_changed(window: Window) -> None:
+    page = begun(window)
+    slow = {"offline": False, "latency": LATE_MS, "downloadThroughput": -1, "uploadThroughput": -1}
+    page.context.new_cdp_session(page).send("Network.emulateNetworkConditions", slow)
+    page.set_input_files("#tune", FILE)
+
+    page.click("#send")
+    wait_until(page, "/^[1-9] s\\./.test(document.querySelector('#elapsed').textContent)")
+
+    assert page.inner_text("#stage") == "Finding the best arrangement …"
+    assert page.get_attribute("#progress", "value") is None  # how far it is nobody knows
+    assert page.evaluate("document.querySelector('#new-disc').inert")
+    assert focused(page) == "stage"
+    page.click("#give-up")
+    assert not page.evaluate("document.querySelector('#new-disc').inert")
+    assert page.evaluate("document.querySelector('#tune').files.length") == 1
+
+
+def test_the_share_that_is_sent_is_told(window: Window) -> None:
+    page = begun(window)
+    sent: list[tuple[str, float]] = []
+    page.expose_function("told", lambda words, value: sent.append((words, value)))
+    page.evaluate(
+        """() => new MutationObserver(() => told(
+             document.querySelector("#elapsed").textContent, document.querySelector("#progress").value,
+           )).observe(document.querySelector("#elapsed"), { childList: true })"""
+    )
+    page.set_input_files("#tune", FILE)
+
+    page.click("#send")
+    page.wait_for_url("**/discs/*")
+
+    assert ("100 % sent", 1) in sent
+
+
+def test_a_fault_at_a_field_goes_when_the_field_is_changed(window: Window) -> None:
+    page = begun(window)
+    page.select_option("[id='speed.mode']", "factor")
+    page.set_input_files("#tune", FILE)
+
+    page.click("#send")
+    assert page.inner_text("[id='speed.factor-fault']") == "This is needed."
+    assert page.inner_text("#faults li") == "Times as fast as written: This is needed."
+    page.click("#faults a")
+    assert focused(page) == "speed.factor"
+    page.keyboard.type("1")
+
+    assert page.inner_text("[id='speed.factor-fault']") == ""
+    assert page.get_attribute("[id='speed.factor']", "aria-invalid") is None
+    assert page.inner_text("#faults") == ""  # it was the only one
+
+
+def test_what_the_service_finds_between_fields_is_told_at_the_choice_they_belong_to(window: Window) -> None:
+    window.watch.bears.append(REFUSED)
+    page = begun(window)
+    page.set_input_files("#tune", FILE)
+    page.select_option("[id='speed.mode']", "best")
+    page.fill("[id='speed.least']", "2")
+
+    page.click("#send")
+    page.wait_for_selector("[id='speed.mode-fault']:not(:empty)")
+
+    assert "least (2) must not be above most (1.25)" in page.inner_text("[id='speed.mode-fault']")
+
+
 def test_by_keys_alone_a_disc_is_begun_given_up_and_laid_out(window: Window) -> None:
     page = begun(window)
     page.route("**/v1/layouts?*", _hold)
@@ -116,34 +212,15 @@ def test_by_keys_alone_a_disc_is_begun_given_up_and_laid_out(window: Window) -> 
     page.keyboard.type("0")
     tab_to(page, "send")
     page.keyboard.press("Enter")
-    page.wait_for_selector("#give-up:not([hidden])")
+    page.wait_for_selector("#under-way:not([hidden])")
     tab_to(page, "give-up")
     page.keyboard.press("Enter")
-    page.wait_for_selector("#give-up[hidden]", state="attached")
+    page.wait_for_selector("#under-way[hidden]", state="attached")
     assert "Given up" in page.inner_text("#faults")
     page.unroute("**/v1/layouts?*")
     tab_to(page, "send")
     page.keyboard.press("Enter")
     page.wait_for_url("**/discs/*")
-
-
-def test_settings_come_from_a_json_file_and_go_into_one_unchanged(window: Window) -> None:
-    page = begun(window)
-    settings = {
-        "format": "discwright-settings/1",
-        "speed": {"mode": "factor", "factor": 1.1},
-        "channels": {"leave_out": [3, 4]},
-        "rulings": [{"note": 1, "do": "leave-out"}],
-    }
-    content = json.dumps(settings).encode()
-    page.set_input_files("#settings-file", {"name": "s.json", "mimeType": "application/json", "buffer": content})
-    wait_until(page, "document.querySelector('#said').textContent.includes('s.json')")
-
-    with page.expect_download() as download:
-        page.click("#save-settings")
-
-    assert page.input_value("[id='speed.factor']") == "1.1"
-    assert json.loads(download.value.path().read_text(encoding="utf-8")) == settings
 
 
 def test_who_is_signed_in_sends_the_token_that_writes_must_bring(open_window: Callable[..., Window]) -> None:

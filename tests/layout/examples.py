@@ -124,5 +124,6 @@ def arrangement_of(plucks: list[tuple[int, float]], left_out: tuple[LeftOut, ...
         lowest=np.zeros(notes, dtype=np.bool_),
         melody=np.zeros(notes, dtype=np.bool_),
         tried=(),
+        transpositions=(),
         load=None,
     )

@@ -41,8 +41,16 @@ class TriedTold(Part):
 
     semitones: int
     speed_factor: float
-    kept: int
+    kept: int | None = Field(description="of its best arrangement; null where only the bound was found")
     bound: int
+
+
+class TransposedTold(Part):
+    """A transposition that was searched, whatever the speed."""
+
+    semitones: int
+    kept: int | None = Field(description="the most that an arrangement found keeps; null where none was made")
+    bound: int = Field(description="no arrangement keeps more at this transposition")
 
 
 class LoadedTold(Part):
@@ -203,6 +211,7 @@ class ReportRecord(OfADisc):
     not_asked: dict[str, int] = Field(description="how many notes by reason")
     worst_bars: list[BarLossTold]
     tried: list[TriedTold]
+    transpositions: list[TransposedTold]
     load: LoadTold | None
     no_load_because: str | None
     drive: DriveTold

@@ -39,6 +39,7 @@ from service.client.shapes.common import TallyTold as TallyTold
 from service.client.shapes.common import ToolWorkTold as ToolWorkTold
 from service.client.shapes.common import TorqueTold as TorqueTold
 from service.client.shapes.common import TrackTold as TrackTold
+from service.client.shapes.common import TransposedTold as TransposedTold
 from service.client.shapes.common import TriedTold as TriedTold
 from service.client.shapes.common import WindingTold as WindingTold
 from service.client.shapes.events import EventAnswer as EventAnswer

@@ -203,6 +203,7 @@ class ReportRecord(TypedDict):
     not_asked: dict[str, int]
     worst_bars: list["BarLossTold"]
     tried: list["TriedTold"]
+    transpositions: list["TransposedTold"]
     load: "LoadTold | None"
     no_load_because: str | None
     drive: "DriveTold"
@@ -294,12 +295,20 @@ class TrackTold(TypedDict):
     largest_nudge_ms: float
 
 
+class TransposedTold(TypedDict):
+    """A transposition that was searched, whatever the speed."""
+
+    semitones: int
+    kept: int | None
+    bound: int
+
+
 class TriedTold(TypedDict):
     """A transposition and speed that was tried."""
 
     semitones: int
     speed_factor: float
-    kept: int
+    kept: int | None
     bound: int
 
 

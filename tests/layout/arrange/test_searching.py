@@ -76,6 +76,44 @@ def test_each_transposition_is_told_once_at_its_best_speed_best_first() -> None:
     assert len(found.tried) == MOST_TOLD
 
 
+def test_every_transposition_is_told_with_the_most_of_all_its_speeds_the_lowest_first() -> None:
+    worths = {
+        way(semitones, speed): 100 + 10 * semitones - (speed != 1.0)
+        for semitones in range(-6, 2)
+        for speed in (1.0, 1.2)
+    }
+
+    found = searched(worths)
+
+    assert [one.semitones for one in found.transpositions] == list(range(-6, 2))
+    for one in found.transpositions:
+        best = 100 + 10 * one.semitones
+        assert one.kept in (None, best)
+        assert one.bound >= best
+    assert {one.semitones: one.kept for one in found.transpositions}[1] == 110
+    assert sum(one.kept is not None for one in found.transpositions) >= MOST_TOLD
+
+
+def test_a_speed_that_was_never_come_to_leaves_its_transposition_open() -> None:
+    # At 0 two speeds are solved for 60 each; the quick one might keep 80, which five others beat with 100.
+    bounds = {way(0): 200, way(0, 0.9): 70, way(0, 1.2): 80} | {way(semitones): 100 for semitones in range(1, 6)}
+
+    found = search(bounds, lambda one: [problem_with([Asked(at_ms=0, worth=100 if one.semitones else 60)])], Budget())
+
+    assert isinstance(found, Found)
+    told = {one.semitones: (one.kept, one.bound) for one in found.transpositions}
+    assert told == {0: (60, 80)} | dict.fromkeys(range(1, 6), (100, 100))
+
+
+def test_a_transposition_that_is_impossible_is_not_told() -> None:
+    two = [Asked(at_ms=0, must_sound=True, nudge_ms=0), Asked(at_ms=1, must_sound=True, nudge_ms=0, worth=9000)]
+
+    found = search({way(0): ANY, way(1): ANY}, lambda one: [problem_with(two[: 2 - one.semitones])], Budget())
+
+    assert isinstance(found, Found)
+    assert [(one.semitones, one.kept) for one in found.transpositions] == [(1, 1000)]
+
+
 def test_ways_that_are_impossible_are_told_with_what_shows_it() -> None:
     two = [Asked(at_ms=0, must_sound=True, nudge_ms=0), Asked(at_ms=1, must_sound=True, nudge_ms=0)]
 

@@ -110,6 +110,18 @@ def test_the_transpositions_told_are_the_best_five_with_what_they_keep() -> None
     assert keeps == sorted(keeps, reverse=True)
 
 
+def test_every_transposition_of_the_range_is_told_with_a_bound_that_holds() -> None:
+    notes = [(0.0, "C4"), (1.0, "D4"), (2.0, "E4"), (3.0, "G4")]
+
+    told = arranged(notes, transpose=BEST).transpositions
+
+    assert [one.semitones for one in told] == list(range(-12, 13))
+    for one in told:
+        kept = arranged(notes, transpose={"mode": "fixed", "semitones": one.semitones}).worth.kept
+        assert one.kept in (None, kept)
+        assert one.bound >= kept
+
+
 def test_a_pluck_that_a_ruling_puts_into_another_octave_counts_among_what_a_transposition_may_keep() -> None:
     free = plucks(["C4", "E6", "A4"])
     ruled = replace(free, on_track=frozen_ints([NO_TRACK, 3, NO_TRACK]))  # E6 on the track of E4

@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from layout.arrange.arrangement import NO_NOTE, Arrangement, LeftOut, Load, Tried
+from layout.arrange.arrangement import NO_NOTE, Arrangement, LeftOut, Load, Transposed, Tried
 from layout.mechanics.arrays import BoolArray, frozen_floats, frozen_ints
 from layout.read.score import Score
 from layout.report import report_on
@@ -274,11 +274,16 @@ def test_the_transpositions_tried_and_the_worth_are_told_as_they_are() -> None:
         Tried(semitones=2, speed_factor=1.0, kept=2000, bound=2000),
         Tried(semitones=-5, speed_factor=1.0, kept=None, bound=1900),
     )
-    arrangement = replace(arrangement_of([(1, 0.0), (2, 0.0)]), tried=tried)
+    transpositions = (
+        Transposed(semitones=-5, kept=None, bound=1900),
+        Transposed(semitones=2, kept=2000, bound=2000),
+    )
+    arrangement = replace(arrangement_of([(1, 0.0), (2, 0.0)]), tried=tried, transpositions=transpositions)
 
     report = reported(arrangement)
 
     assert report.tried == tried
+    assert report.transpositions == transpositions
     assert report.worth == arrangement.worth
 
 

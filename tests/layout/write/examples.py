@@ -162,6 +162,7 @@ def laid_out_of(disc: Disc, *, title: str = "Example", findings: tuple[Finding, 
         lowest=np.zeros(count + 1, dtype=np.bool_),
         melody=np.ones(count + 1, dtype=np.bool_),
         tried=(),
+        transpositions=(),
         load=None,
     )
     plucks = Plucks(track_index=disc.track_index, sounds_s=frozen_floats(sounds_s), silent_from_s=frozen_floats([]))

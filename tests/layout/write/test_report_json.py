@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from layout.arrange.arrangement import LeftOut, Load, Tried, Worth
+from layout.arrange.arrangement import LeftOut, Load, Transposed, Tried, Worth
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.report import report_on
 from layout.version import ENGINE_VERSION
@@ -27,7 +27,7 @@ from tests.layout.write.examples import (
 FIELDS = [
     *("format", "title", "fingerprint", "disc", "good_to_cut", "movement", "cutter", "engine_version"),
     *("transposed_semitones", "speed_factor", "from_s", "worth", "projection_count", "extra_pluck_count"),
-    *("total", "highest", "lowest", "inner", "melody", "not_asked", "worst_bars", "tried"),
+    *("total", "highest", "lowest", "inner", "melody", "not_asked", "worst_bars", "tried", "transpositions"),
     *("load", "no_load_because", "drive", "net_section", "depth", "tracks"),
 ]
 TALLY_FIELDS = [
@@ -140,6 +140,10 @@ def test_melody_transpositions_load_and_notes_not_asked_for_are_written() -> Non
             Tried(semitones=2, speed_factor=1.0, kept=3000, bound=3000),
             Tried(semitones=0, speed_factor=0.9, kept=None, bound=2500),
         ),
+        transpositions=(
+            Transposed(semitones=0, kept=None, bound=2500),
+            Transposed(semitones=2, kept=3000, bound=3000),
+        ),
         load=Load(peak_nmm=12.0, at_s=3.5, plucks=(0, 2), limit_nmm=48.0),
     )
 
@@ -151,6 +155,10 @@ def test_melody_transpositions_load_and_notes_not_asked_for_are_written() -> Non
     assert record["tried"] == [
         {"semitones": 2, "speed_factor": 1.0, "kept": 3000, "bound": 3000},
         {"semitones": 0, "speed_factor": 0.9, "kept": None, "bound": 2500},
+    ]
+    assert record["transpositions"] == [
+        {"semitones": 0, "kept": None, "bound": 2500},
+        {"semitones": 2, "kept": 3000, "bound": 3000},
     ]
     assert record["load"] == {
         "peak_nmm": 12.0,

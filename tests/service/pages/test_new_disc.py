@@ -11,6 +11,7 @@ from flask.testing import FlaskClient
 from pydantic import BaseModel
 
 from layout.documents import Settings
+from layout.documents.settings import Ruling
 from service.app import create_app
 from service.pages.assets import assets
 from service.pages.texts import for_scripts
@@ -22,7 +23,8 @@ NO_FIELD = {"format", "rulings"}  # rulings are made on the disc
 
 
 class Fields(HTMLParser):
-    """The fields of a page by name, the labels by what they are for, and every id."""
+    """The fields of a page by name, the labels by what they are for, every id, what is folded away, and which values
+    of a choice others wait for."""
 
     def __init__(self, text: str) -> None:
         super().__init__()
@@ -30,7 +32,10 @@ class Fields(HTMLParser):
         self.options: dict[str, list[str | None]] = {}
         self.labelled: set[str | None] = set()
         self.ids: set[str | None] = set()
+        self.waiting: dict[str, set[str]] = {}
+        self.folded: set[str] = set()
         self._select = ""
+        self._fold = False
         self.feed(text)
 
     def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
@@ -38,11 +43,21 @@ class Fields(HTMLParser):
         self.ids.add(told.get("id"))
         if tag == "label":
             self.labelled.add(told.get("for"))
-        if tag in ("input", "select"):
+        if tag == "legend":
+            self.labelled.add(str(told["id"]).removesuffix("-legend"))
+        if "data-when" in told:
+            self.waiting.setdefault(str(told["data-when"]), set()).update(str(told["data-among"]).split())
+        self._fold = self._fold or "fold" in str(told.get("class")).split()
+        if tag in ("input", "select", "fieldset") and "id" in told:
             self._select = str(told.get("name") or told.get("id"))
             self.fields[self._select] = told
+            if self._fold:
+                self.folded.add(self._select)
         if tag == "option":
             self.options.setdefault(self._select, []).append(told.get("value"))
+
+    def handle_endtag(self, tag: str) -> None:
+        self._fold = self._fold and tag != "details"
 
 
 @pytest.fixture
@@ -117,8 +132,26 @@ def numbers(schema: dict[str, Any]) -> Iterator[tuple[str, dict[str, Any]]]:
 def test_every_field_has_a_label_and_a_place_for_its_fault(shown: Fields) -> None:
     for name, field in shown.fields.items():
         assert field["id"] in shown.labelled, name
-        if name != "settings-file":
-            assert f"{field['id']}-fault" in shown.ids, name
+        assert f"{field['id']}-fault" in shown.ids, name
+
+
+def test_a_field_that_waits_for_a_choice_waits_for_one_that_there_is(shown: Fields) -> None:
+    with_rulings = {"rulings"}  # no value of a choice, but that a settings file brought some
+
+    assert set(shown.waiting) == {
+        *("transpose.mode", "speed.mode", "octave_moves", "passage-from", "passage-to", "channels-which")
+    }
+    for choice, values in shown.waiting.items():
+        assert values - with_rulings <= set(shown.options[choice]), choice
+
+
+def test_only_the_few_settings_that_matter_stand_unfolded(shown: Fields) -> None:
+    of_settings = {name for name, field in shown.fields.items() if "data-kind" in field}
+
+    assert of_settings - shown.folded == {
+        *("transpose.mode", "transpose.range", "transpose.semitones"),
+        *("speed.mode", "speed.factor", "speed.least", "speed.most", "octave_moves", "octave_fit", "discs"),
+    }
 
 
 def test_what_ships_can_be_chosen_and_the_default_cutter_comes_first(shown: Fields) -> None:
@@ -129,7 +162,7 @@ def test_what_ships_can_be_chosen_and_the_default_cutter_comes_first(shown: Fiel
 def test_the_scripts_of_the_page_find_their_elements_their_texts_and_what_they_import(shown: Fields) -> None:
     folder = "js/new/"
     scripts = {name: asset.content.decode() for name, asset in assets().items() if name.startswith(folder)}
-    texts_given = for_scripts(("new",))
+    texts_given = for_scripts(("new", "movements"))
 
     assert len(scripts) > 0
     for name, script in scripts.items():
@@ -137,6 +170,7 @@ def test_the_scripts_of_the_page_find_their_elements_their_texts_and_what_they_i
         assert set(re.findall(r'text\("([\w.]+)"', script)) <= texts_given.keys(), name
         for imported in re.findall(r'from "(\.[^"]+)"', script):
             assert posixpath.normpath(folder + imported) in assets(), name
-    told = {f"new.{stage}" for stage in re.findall(r'told\("(\w+)"', "".join(scripts.values()))}
-    assert len(told) > 0
-    assert told <= texts_given.keys()
+    told = set(re.findall(r'(?:stage|fail)\("([\w.]+)"', "".join(scripts.values())))
+    assert {"new.sending", "new.planning", "new.given_up"} <= told
+    deeds = Ruling.model_json_schema()["properties"]["do"]["enum"]
+    assert told | {f"new.ruling_{deed.replace('-', '_')}" for deed in deeds} <= texts_given.keys()

@@ -1,106 +1,112 @@
 // The page on which a disc is begun: the file and the fields stay whatever the service says.
+import { Problem } from "../asking.js";
 import { el, find, say } from "../dom.js";
 import { text } from "../texts.js";
-import { clear, tell } from "./faults.js";
+import * as faults from "./faults.js";
+import { missing, settingsOf, show, showWhatDepends } from "./fields.js";
+import { rulingWords, showRulings } from "./rulings.js";
 import { send } from "./sending.js";
-import { settingsOf, show } from "./settings_form.js";
+import { saveAs, settingsIn } from "./settings_file.js";
+import { begin } from "./stages.js";
+import { copyOf, faultOf, showChosen, takeDrops } from "./tune_choice.js";
 
 const form = find("#new-disc");
 const input = find("#tune");
-const drop = find("#drop");
-let dropped = null; // a file that was dropped; the input keeps one that was chosen
-let kept = {}; // what a settings file says that the page has no field for
+const mostBytes = Number(form.dataset.mostBytes);
+let rulings = []; // that a settings file brought
+let stages = null; // of what is under way
 
-const tune = () => dropped ?? input.files[0] ?? null;
+const redraw = () => showWhatDepends(form, rulings, (count) => text("new.changed", { count }));
+const tuneFault = (words) => faults.show([{ id: "tune", words }]);
 
-function showTune() {
-  const file = tune();
-  find("#chosen").textContent = file ? text("new.chosen", { name: file.name, size: Math.ceil(file.size / 1024) }) : "";
-}
-
-function underWay(isUnderWay) {
-  find("#under-way").hidden = !isUnderWay;
-  find("#give-up").hidden = !isUnderWay;
-  find("#send").disabled = isUnderWay;
-}
-
-function told(stage, share) {
-  const progress = find("#progress");
-  find("#stage").textContent = text(`new.${stage}`);
-  if (share === null) progress.removeAttribute("value");
-  else progress.value = share;
+function keep(left) {
+  rulings = left;
+  showRulings(rulings, (fewer) => {
+    faults.clearAt(find("#rulings"));
+    keep(fewer);
+    say(fewer.length ? text("new.rulings_left", { count: fewer.length }) : text("new.rulings_gone"));
+    (fewer.length ? find("#rulings") : find("#settings-file")).focus();
+  });
+  redraw();
 }
 
 function led(made) {
   if (made.fingerprint) {
+    stages.opening();
     location.assign(`/discs/${made.fingerprint}`);
     return;
   }
-  const discs = made.discs.map(({ fingerprint, title, disc }) =>
-    el("li", {}, el("a", { href: `/discs/${fingerprint}` }, text("new.disc_of", { title, number: disc.number, of: disc.of }))));
+  stages.end();
+  const discs = made.discs.map(({ fingerprint, title, disc, good_to_cut: isGood }) =>
+    el("li", {},
+      el("a", { href: `/discs/${fingerprint}` }, text("new.disc_of", { title, number: disc.number, of: disc.of })),
+      " ",
+      el("span", { class: isGood ? "good" : "bad" }, text(isGood ? "new.good" : "new.not_good"))));
   const list = find("#made");
   list.replaceChildren(el("h2", {}, text("new.made_several", { count: discs.length })), el("ul", {}, discs));
   list.focus();
 }
 
-async function begin(event) {
+async function lay(event) {
   event.preventDefault();
-  clear();
-  const file = tune();
-  if (!file) return tell({ type: "/problems/tune-missing", detail: text("new.no_tune") });
-  if (file.size > Number(form.dataset.mostBytes)) {
-    const most = Math.floor(Number(form.dataset.mostBytes) / 1024);
-    return tell({ type: "/problems/upload-too-large", detail: text("new.too_large", { most }) });
-  }
+  if (form.inert) return;
+  faults.clear();
+  find("#made").replaceChildren();
+  const [file] = input.files;
+  const found = missing(form).map((id) => ({ id, words: text("new.needed") }));
+  const words = faultOf(file, mostBytes);
+  if (words) found.unshift({ id: "tune", words });
+  if (found.length) return faults.show(found);
+  const tune = await copyOf(file);
+  if (tune === null) return tuneFault(text("new.gone", { name: file.name }));
   const ending = new AbortController();
   find("#give-up").onclick = () => ending.abort();
-  underWay(true);
-  told("sending", 0);
-  const asked = { tune: file, movement: find("#movement").value, cutter: find("#cutter").value, settings: settingsOf(form, kept) };
+  const asked = { tune, movement: find("#movement").value, cutter: find("#cutter").value, settings: settingsOf(form, rulings) };
+  stages = begin(form);
   try {
-    led(await send(asked, { told, giveUp: ending.signal }));
+    led(await send(asked, stages, ending.signal));
   } catch (fault) {
-    if (!fault.told) throw fault;
-    tell(fault.told);
-  } finally {
-    underWay(false);
+    stages.end();
+    if (!(fault instanceof Problem)) throw fault;
+    faults.showTold(fault.told, (place) => (rulings[place] ? rulingWords(rulings[place]) : `${place}`));
   }
 }
 
-async function fromFile({ target }) {
-  const file = target.files[0];
+function judgeTune() {
+  showChosen(input);
+  const words = input.files[0] && faultOf(input.files[0], mostBytes);
+  if (words) tuneFault(words);
+}
+
+async function fromFile(chooser) {
+  const [file] = chooser.files;
   if (!file) return;
-  clear();
+  faults.clear();
   try {
-    const settings = JSON.parse(await file.text());
-    if (settings === null || typeof settings !== "object" || Array.isArray(settings)) throw new SyntaxError();
-    kept = show(form, settings);
+    const { settings, words } = await settingsIn(file);
+    if (words) return faults.show(words.map((one) => ({ id: "settings-file", words: one })), text("new.settings_kept"));
+    show(form, settings);
+    keep(settings.rulings ?? []);
     say(text("new.settings_read", { name: file.name }));
-  } catch {
-    tell({ detail: text("new.settings_unread", { name: file.name }) });
+  } catch (fault) {
+    if (!(fault instanceof Problem)) throw fault;
+    faults.show([{ id: "settings-file", words: fault.message }], text("new.settings_kept"));
+  } finally {
+    chooser.value = "";
   }
-  target.value = "";
 }
 
-function toFile() {
-  const words = `${JSON.stringify(settingsOf(form, kept), null, 2)}\n`;
-  const address = URL.createObjectURL(new Blob([words], { type: "application/json" }));
-  el("a", { href: address, download: "settings.json" }).click();
-  setTimeout(() => URL.revokeObjectURL(address), 1000);
-}
-
-form.addEventListener("submit", begin);
-input.addEventListener("change", () => { dropped = null; showTune(); });
-for (const name of ["dragenter", "dragover"]) {
-  drop.addEventListener(name, (event) => { event.preventDefault(); drop.classList.add("over"); });
-}
-drop.addEventListener("dragleave", () => drop.classList.remove("over"));
-drop.addEventListener("drop", (event) => {
-  event.preventDefault();
-  drop.classList.remove("over");
-  if (event.dataTransfer.files.length) { [dropped] = event.dataTransfer.files; showTune(); }
+form.addEventListener("submit", lay);
+form.addEventListener("input", ({ target }) => faults.clearAt(target));
+form.addEventListener("change", ({ target }) => {
+  if (target === find("#settings-file")) return fromFile(target);
+  faults.clearAt(target);
+  redraw();
+  if (target === input) judgeTune();
 });
-find("#settings-file").addEventListener("change", fromFile);
-find("#save-settings").addEventListener("click", toFile);
-showTune();
+takeDrops(input, find("#drop"), tuneFault);
+find("#save-settings").addEventListener("click", () => saveAs(settingsOf(form, rulings), input.files[0]?.name));
+addEventListener("pageshow", ({ persisted }) => persisted && stages?.end()); // back from the disc, by the browser's own way
+showChosen(input);
+redraw();
 form.dataset.ready = "true";

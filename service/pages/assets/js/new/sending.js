@@ -2,8 +2,8 @@
 import { Problem, tokenOfThisBrowser } from "../asking.js";
 import { text } from "../texts.js";
 
-// Gives what the API tells of the layout, or of several. `told(stage, share)` hears how far it is.
-export async function send({ tune, movement, cutter, settings }, { told, giveUp }) {
+// Gives what the API tells of the layout, or of several. `stages` hears how far it is; `giveUp` is a signal.
+export async function send({ tune, movement, cutter, settings }, stages, giveUp) {
   const form = new FormData();
   form.append("tune", tune, tune.name);
   form.append("settings", new Blob([JSON.stringify(settings)], { type: "application/json" }));
@@ -12,8 +12,8 @@ export async function send({ tune, movement, cutter, settings }, { told, giveUp 
   asked.open("POST", `/v1/layouts?${new URLSearchParams({ movement, cutter })}`);
   asked.setRequestHeader("Accept", "application/json");
   if (own) asked.setRequestHeader("X-CSRF-Token", own);
-  asked.upload.addEventListener("progress", ({ loaded, total }) => told("sending", total ? loaded / total : 0));
-  asked.upload.addEventListener("load", () => told("planning", null));
+  asked.upload.addEventListener("progress", ({ loaded, total }) => stages.sent(total ? loaded / total : 0));
+  asked.upload.addEventListener("load", () => stages.planning());
   giveUp.addEventListener("abort", () => asked.abort());
   return new Promise((done, failed) => {
     const fail = (key) => failed(new Problem({ detail: text(key) }));
@@ -30,6 +30,7 @@ export async function send({ tune, movement, cutter, settings }, { told, giveUp 
       if (asked.status === 201) done(value);
       else failed(new Problem(value));
     });
-    asked.send(form);
+    if (giveUp.aborted) fail("new.given_up");
+    else asked.send(form);
   });
 }
