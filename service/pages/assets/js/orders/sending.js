@@ -7,7 +7,7 @@ import { showLink } from "./link.js";
 
 // Sent again after a lost connection, the same words under the same name are done once.
 const names = new WeakMap();
-function nameFor(form, body) {
+export function nameFor(form, body) {
   const words = JSON.stringify(body);
   const kept = names.get(form);
   if (kept?.words === words) return kept.name;
