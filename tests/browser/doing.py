@@ -1,0 +1,66 @@
+"""What people do in pages, in the tests: drop a file, go by Tab alone, listen."""
+
+from typing import Any
+
+from playwright.sync_api import Page
+
+from tests.browser.conftest import wait_until
+
+MOST_TABS = 120
+DROP = """([bytes, name]) => {
+  const held = new DataTransfer();
+  held.items.add(new File([new Uint8Array(bytes)], name, { type: "audio/midi" }));
+  const told = { dataTransfer: held, bubbles: true, cancelable: true };
+  const place = document.querySelector("#drop");
+  for (const kind of ["dragenter", "dragover", "drop"]) place.dispatchEvent(new DragEvent(kind, told));
+}"""
+# webkitAudioDecodedByteCount is chromium's own: how much sound came out of the file.
+HEARD = """selector => {
+  const sound = document.querySelector(selector);
+  return sound.currentTime > 0.5 && !sound.paused && sound.error === null && sound.webkitAudioDecodedByteCount > 0;
+}"""
+
+
+def drop(page: Page, tune: bytes, name: str) -> None:
+    """Drop a file where the page of a new disc takes one."""
+    page.evaluate(DROP, [list(tune), name])
+
+
+def focused(page: Page) -> str:
+    """The id of what has the focus."""
+    return str(page.evaluate("document.activeElement.id"))
+
+
+def tab_to(page: Page, wanted: str) -> None:
+    """Go on by Tab alone until what has this id has the focus."""
+    for _ in range(MOST_TABS):
+        if focused(page) == wanted:
+            return
+        page.keyboard.press("Tab")
+    raise AssertionError(f"Tab never reaches {wanted}")
+
+
+def tab_to_match(page: Page, selector: str) -> None:
+    """Go on by Tab alone until what matches has the focus."""
+    for _ in range(MOST_TABS):
+        if page.evaluate("wanted => document.activeElement.matches(wanted)", selector):
+            return
+        page.keyboard.press("Tab")
+    raise AssertionError(f"Tab never reaches {selector}")
+
+
+def hear(page: Page, selector: str = "audio") -> None:
+    """Wait until a sound plays: its time goes on, and bytes of sound came out of its file."""
+    wait_until(page, f"({HEARD})({selector!r})")
+
+
+def turned_deg(page: Page) -> float:
+    """How far the disc is drawn turned."""
+    return float(str(page.get_attribute("#stage", "data-turned-deg")))
+
+
+def settings_of(page: Page) -> Any:
+    """The settings that the API keeps for the disc whose address the page has."""
+    answer = page.request.get(page.url.replace("/discs/", "/v1/layouts/").split("?")[0] + "/settings.json")
+    assert answer.status == 200, answer.text()
+    return answer.json()
