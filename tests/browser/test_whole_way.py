@@ -3,7 +3,7 @@
 import io
 from collections.abc import Callable
 
-import ezdxf
+from ezdxf.filemanagement import read
 from playwright.sync_api import Download, Page
 
 from service.client.client import Client
@@ -37,7 +37,7 @@ def ordered(page: Page, reference: str) -> None:
 def shop_order(shop: Window, reference: str, movement: str = "fernhollow-31") -> Page:
     """The page of an order that a program placed, once it is planned."""
     client = Client(shop.service.url, shop.service.key)
-    order = client.order(TUNE, {"movement": movement, "reference": reference})  # type: ignore[typeddict-item]
+    order = client.order(TUNE, {"movement": movement, "reference": reference})
     page = shop.open(f"/orders/{order['id']}")
     page.wait_for_selector(RELEASE)
     return page
@@ -95,7 +95,7 @@ def test_from_a_dropped_tune_to_a_disc_that_is_heard_ordered_accepted_released_a
     with page.expect_download() as download:
         page.click("table.files a:text-is('disc.dxf')")
 
-    drawing = ezdxf.read(io.StringIO(content_of(download.value).decode()))
+    drawing = read(io.StringIO(content_of(download.value).decode()))
     assert fingerprint in download.value.suggested_filename
     assert drawing.audit().errors == []
     assert len(drawing.modelspace()) > 100
@@ -145,7 +145,7 @@ def test_a_disc_with_errors_is_released_with_who_and_why_and_its_drawing_says_so
     assert "NOT-GOOD-TO-CUT" in download.value.suggested_filename
     content = content_of(download.value)
     assert b"NOT GOOD TO CUT: a test cut in card" in content  # a comment at its head
-    assert ezdxf.read(io.StringIO(content.decode())).audit().errors == []
+    assert read(io.StringIO(content.decode())).audit().errors == []
 
 
 def test_a_release_that_comes_too_late_is_told_where_it_was_asked_for(open_window: Callable[..., Window]) -> None:
