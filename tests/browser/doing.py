@@ -1,5 +1,6 @@
-"""What people do in pages, in the tests: drop a file, go by Tab alone, listen."""
+"""What people do in pages, in the tests: drop a file, go by Tab alone, listen, unfold, look."""
 
+from pathlib import Path
 from typing import Any
 
 from playwright.sync_api import Page
@@ -19,6 +20,37 @@ HEARD = """selector => {
   const sound = document.querySelector(selector);
   return sound.currentTime > 0.5 && !sound.paused && sound.error === null && sound.webkitAudioDecodedByteCount > 0;
 }"""
+
+
+UNFOLD = """() => {
+  const folded = [...document.querySelectorAll("details:not([open])")];
+  for (const one of folded) one.open = true;
+  return folded.length;
+}"""
+# What reaches past the right edge, where nothing that holds it scrolls by itself.
+WIDEST = """() => {
+  const held = (one) => one.matches("body") ? false : getComputedStyle(one).overflowX !== "visible" || held(one.parentElement);
+  return [...document.querySelectorAll("body *")]
+    .filter((one) => one.getBoundingClientRect().right > document.documentElement.clientWidth + 0.5)
+    .filter((one) => !held(one.parentElement)).slice(0, 5).map((one) => one.outerHTML.slice(0, 120));
+}"""
+TALLEST_PX = 6000  # of a picture: the page of reference is twenty times as tall, and takes that long to be drawn
+
+
+def unfold(page: Page) -> int:
+    """Open all that is folded; gives how many parts that were."""
+    return int(page.evaluate(UNFOLD))
+
+
+def widest(page: Page) -> Any:
+    """The first things that reach past the right edge of the page."""
+    return page.evaluate(WIDEST)
+
+
+def take_picture(page: Page, path: Path) -> None:
+    """A picture of the page, or of its beginning where it is very tall."""
+    wide, high = page.evaluate("[document.documentElement.clientWidth, document.documentElement.scrollHeight]")
+    page.screenshot(path=path, full_page=True, clip={"x": 0, "y": 0, "width": wide, "height": min(high, TALLEST_PX)})
 
 
 def drop(page: Page, tune: bytes, name: str) -> None:
