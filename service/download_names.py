@@ -13,6 +13,7 @@ LONGEST_MATERIAL = 40  # characters
 NOT_GOOD = "NOT-GOOD-TO-CUT"
 ALL_FILES = "all-files.zip"
 SETTINGS = "settings.json"
+TUNE = "tune.mid"
 ENDINGS = {
     "disc.dxf": ".dxf",
     "record.dxf": "_record-not-for-cutting.dxf",
@@ -24,6 +25,7 @@ ENDINGS = {
     "work-sheet.pdf": "_work-sheet.pdf",
     "making.json": "_making.json",
     SETTINGS: "_settings.json",
+    TUNE: "_tune.mid",
     ALL_FILES: "_all-files.zip",
 }
 

@@ -26,9 +26,9 @@ from service.api.operations import hearings, layouts
 from service.api.posted import read_posted
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments, read_body
-from service.download_names import ALL_FILES, SETTINGS, NamedDisc, content_disposition, download_name
+from service.download_names import ALL_FILES, SETTINGS, TUNE, NamedDisc, content_disposition, download_name
 from service.limits import Limits
-from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES
+from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES, MIDI_MEDIA_TYPE
 from service.parts import Parts
 
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
@@ -93,24 +93,25 @@ def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Bluepr
         response.make_conditional(request)
         return response
 
-    _add_settings(routes, desk, teller, limits)
+    _add_what_was_brought(routes, desk, teller, limits)
     _add_hearings(routes, desk, shelf)
     return routes
 
 
-def _add_settings(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTeller", limits: Limits) -> None:
+def _add_what_was_brought(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTeller", limits: Limits) -> None:
     @routes.get("/<fingerprint>/settings.json")
     @describes(layouts.SETTINGS)
     @open_on_loopback(Scope.ORDER)
     def give_settings(fingerprint: str) -> Response:
         kept = _found(desk, fingerprint)
-        response = Response(kept.inputs.settings, content_type=JSON_MEDIA_TYPE)
-        named = _named(kept, not_good=False)
-        response.headers["Content-Disposition"] = content_disposition(named, SETTINGS, how="attachment")
-        response.headers["Cache-Control"] = "private, no-cache"
-        response.add_etag()
-        response.make_conditional(request)
-        return response
+        return _brought(kept, (SETTINGS, kept.inputs.settings, JSON_MEDIA_TYPE), request)
+
+    @routes.get("/<fingerprint>/tune.mid")
+    @describes(layouts.TUNE)
+    @open_on_loopback(Scope.ORDER)
+    def give_tune(fingerprint: str) -> Response:
+        kept = _found(desk, fingerprint)
+        return _brought(kept, (TUNE, kept.inputs.tune, MIDI_MEDIA_TYPE), request)
 
     @routes.post("/<fingerprint>/again")
     @describes(layouts.AGAIN)
@@ -244,6 +245,18 @@ class LayoutTeller:
     def _tag(self, kept: KeptLayout, what: str, reason: str | None) -> str:
         mark = "" if kept.good_to_cut or reason is None else "-" + hashlib.sha256(reason.encode()).hexdigest()[:16]
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
+
+
+def _brought(kept: KeptLayout, file: tuple[str, bytes, str], asked: Request) -> Response:
+    """What a layout was made from: a file as it was brought, by its name, content and media type."""
+    name, content, media_type = file
+    response = Response(content, content_type=media_type)
+    named = _named(kept, not_good=False)
+    response.headers["Content-Disposition"] = content_disposition(named, name, how="attachment")
+    response.headers["Cache-Control"] = "private, no-cache"
+    response.add_etag()
+    response.make_conditional(asked)
+    return response
 
 
 def _heard(kept: KeptLayout) -> Heard:

@@ -3,12 +3,14 @@
 import json
 import re
 from collections.abc import Mapping
+from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
+from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.desk import LayoutDesk
@@ -16,6 +18,7 @@ from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
+from service.documents import Shipped
 from service.pages.disc_data import disc_data
 from service.pages.disc_plots import plots_of
 from service.pages.disc_shown import ShownDisc
@@ -25,6 +28,22 @@ from service.pages.plot_shapes import FRAME
 from service.pages.rendering import page
 
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Ordering:
+    """How a disc that is shown may be ordered.
+
+    Attributes:
+        may: Whether who asks is signed in, and so may order.
+        of: How many discs the tune is cut into: an order is for them all.
+        documents: `order` names the documents that ship, as the part `order` of a request does; `parts` has the texts
+            of the others by name.
+    """
+
+    may: bool
+    of: int
+    documents: Mapping[str, Mapping[str, str]]
 
 
 def disc_routes(desk: LayoutDesk) -> Blueprint:
@@ -49,7 +68,7 @@ def disc_routes(desk: LayoutDesk) -> Blueprint:
                 detail=f"no layout is kept under {fingerprint[:64]!r}; make the disc again: the same tune, documents "
                 "and settings give the same layout and the same fingerprint",
             )
-        return disc_page(request, _shown(desk, kept, reason))
+        return disc_page(request, _shown(desk, kept, reason), beside={"ordering": _ordering(kept, asker)})
 
     return routes
 
@@ -85,7 +104,22 @@ def disc_page(
         cautions=cautions_of(shown),
         frame=FRAME,
         plots=plots_of(shown.report, before_music_deg=movement.before_music_deg, revolution_s=movement.revolution_s),
-        **beside,
+        **{"ordering": None, **beside},
+    )
+
+
+def _ordering(kept: KeptLayout, asker: Asker | None) -> Ordering:
+    named: dict[str, str] = {}
+    brought: dict[str, str] = {}
+    for name, source in (("movement", kept.inputs.movement), ("cutter", kept.inputs.cutter)):
+        if isinstance(source, Shipped):
+            named[name] = source.id
+        else:
+            brought[name] = source.text.decode()
+    return Ordering(
+        may=asker is not None,  # a key without the scope is shown no layout at all
+        of=kept.disc_count,
+        documents={"order": named, "parts": brought},
     )
 
 

@@ -6,6 +6,7 @@ import time
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from pathlib import Path
+from typing import Literal
 
 import pytest
 from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Request, Route, sync_playwright
@@ -20,7 +21,7 @@ ARGUMENTS = (
 )
 WITHIN_MS = 30_000.0
 SIZES = {"wide": (1280, 900), "phone": (360, 740)}
-SCHEMES = ("light", "dark")
+SCHEMES: tuple[Literal["light", "dark"], ...] = ("light", "dark")
 
 
 @dataclass(kw_only=True)

@@ -7,19 +7,12 @@ import pytest
 from playwright.sync_api import FilePayload, Page, Route
 
 from tests.browser.conftest import Window, wait_until
+from tests.browser.doing import drop, focused, tab_to
 from tests.service.shop import TUNE
 
 READY = "#new-disc[data-ready]"
 FILE: FilePayload = {"name": "turning-day.mid", "mimeType": "audio/midi", "buffer": TUNE}
 NO_TUNE: FilePayload = {"name": "letter.mid", "mimeType": "audio/midi", "buffer": b"no tune, but a letter"}
-DROP = """([bytes, names, place]) => {
-  const held = new DataTransfer();
-  for (const name of names) held.items.add(new File([new Uint8Array(bytes)], name, { type: "audio/midi" }));
-  const told = { dataTransfer: held, bubbles: true, cancelable: true };
-  for (const kind of ["dragenter", "dragover", "drop"]) {
-    document.querySelector(place).dispatchEvent(new DragEvent(kind, told));
-  }
-}"""
 LATE_MS = 20_000  # how late a slow network brings an answer
 REFUSED = "the server responded with a status of 4"  # what the browser's own console says beside the page's words
 
@@ -32,24 +25,11 @@ def _hold(_: Route) -> None:
     """Let no answer come."""
 
 
-def focused(page: Page) -> str:
-    return str(page.evaluate("document.activeElement.id"))
-
-
-def tab_to(page: Page, wanted: str) -> None:
-    """Go on by Tab alone until a field has the focus."""
-    for _ in range(80):
-        if focused(page) == wanted:
-            return
-        page.keyboard.press("Tab")
-    raise AssertionError(f"Tab never reaches {wanted}")
-
-
 @pytest.mark.parametrize("place", ["#drop", "h1"])
 def test_a_tune_that_is_dropped_anywhere_leads_to_the_page_of_its_disc(window: Window, place: str) -> None:
     page = begun(window)
 
-    page.evaluate(DROP, [list(TUNE), ["turning-day.mid"], place])
+    drop(page, TUNE, "turning-day.mid", at=place)
     assert page.inner_text("#chosen") == f"turning-day.mid, {math.ceil(len(TUNE) / 102.4) / 10} KiB"  # to a tenth, up
     page.click("#send")
     page.wait_for_url("**/discs/*")
@@ -111,7 +91,7 @@ def test_without_a_tune_nothing_is_sent_and_the_field_says_what_is_missing(windo
 def test_of_several_files_dropped_none_is_taken_and_the_field_says_so(window: Window) -> None:
     page = begun(window)
 
-    page.evaluate(DROP, [list(TUNE), ["one.mid", "two.mid"], "#drop"])
+    drop(page, TUNE, "one.mid", "two.mid")
 
     assert page.inner_text("#tune-fault") == "2 files were dropped. Drop one."
     assert page.inner_text("#chosen") == ""

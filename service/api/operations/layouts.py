@@ -140,6 +140,19 @@ SETTINGS = Operation(
     problems=("layout-unknown",),
     examples=(Example(status=200, given="a layout"),),
 )
+TUNE = Operation(
+    id="tell_layout_tune",
+    tag="layouts",
+    summary="The tune a layout was made from",
+    description="The MIDI file byte for byte as it was brought, to order the same disc.",
+    headers=(IF_NONE_MATCH,),
+    answers=(
+        Answer(status=200, meaning="The tune.", contents={MIDI: None}, headers=(ETAG, SAVED_AS)),
+        NOT_MODIFIED,
+    ),
+    problems=("layout-unknown",),
+    examples=(Example(status=200, given="a layout"),),
+)
 AGAIN = Operation(
     id="make_layout_again",
     tag="layouts",

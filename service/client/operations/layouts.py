@@ -49,3 +49,8 @@ class OfLayouts(Group):
         """The settings a layout was made with."""
         path = place("/v1/layouts/{fingerprint}/settings.json", {"fingerprint": fingerprint})
         return cast("dict[str, Any]", self._caller.json("GET", path))
+
+    def tell_layout_tune(self, fingerprint: str) -> Answer:
+        """The tune a layout was made from."""
+        path = place("/v1/layouts/{fingerprint}/tune.mid", {"fingerprint": fingerprint})
+        return self._caller.send("GET", path)

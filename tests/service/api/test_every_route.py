@@ -89,6 +89,7 @@ TABLE: dict[str, Access] = {
     "GET /v1/layouts/<fingerprint>/hearing.wav": ORDER_OR_LOOPBACK,
     "GET /v1/layouts/<fingerprint>/hearing.mid": ORDER_OR_LOOPBACK,
     "GET /v1/layouts/<fingerprint>/settings.json": ORDER_OR_LOOPBACK,
+    "GET /v1/layouts/<fingerprint>/tune.mid": ORDER_OR_LOOPBACK,
     "POST /v1/layouts/<fingerprint>/again": ORDER_OR_LOOPBACK,
     "POST /v1/sheets": ORDER_OR_LOOPBACK,
     "POST /v1/trial-pieces": ORDER_OR_LOOPBACK,

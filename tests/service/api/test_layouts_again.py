@@ -76,6 +76,15 @@ def test_the_settings_a_layout_was_made_with_lead_to_the_same_layout_again(
     assert same.status_code == 304
 
 
+def test_the_tune_a_layout_was_made_from_is_given_as_it_was_brought(client: FlaskClient, made: dict[str, Any]) -> None:
+    tune = client.get(f"/v1/layouts/{made['fingerprint']}/tune.mid")
+
+    assert (tune.status_code, tune.data, tune.content_type) == (200, TUNE, "audio/midi")
+    assert f"{made['fingerprint']}_tune.mid" in tune.headers["Content-Disposition"]
+    same = client.get(f"/v1/layouts/{made['fingerprint']}/tune.mid", headers={"If-None-Match": tune.headers["ETag"]})
+    assert same.status_code == 304
+
+
 def test_rulings_that_contradict_are_told_each_at_its_place(client: FlaskClient, made: dict[str, Any]) -> None:
     rulings = [{"note": 0, "do": "must-sound"}, {"note": 1, "do": "leave-out"}, {"note": 0, "do": "leave-out"}]
 
@@ -114,9 +123,11 @@ def test_a_layout_that_is_not_kept_or_is_anothers_is_not_laid_out_again(client: 
 
     for fingerprint, headers in (("0" * 16, {}), ("nothing", {}), (own["fingerprint"], client.other)):  # type: ignore[attr-defined]
         refused = client.post(f"/v1/layouts/{fingerprint}/again", json={}, headers=headers)
-        unread = client.get(f"/v1/layouts/{fingerprint}/settings.json", headers=headers)
+        unread = [
+            client.get(f"/v1/layouts/{fingerprint}/{name}", headers=headers) for name in ("settings.json", "tune.mid")
+        ]
 
-        assert {answer.get_json()["type"] for answer in (refused, unread)} == {"/problems/layout-unknown"}
+        assert {answer.get_json()["type"] for answer in (refused, *unread)} == {"/problems/layout-unknown"}
 
 
 def test_what_is_laid_out_again_is_kept_for_its_owner_alone(client: FlaskClient) -> None:

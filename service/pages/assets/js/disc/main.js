@@ -5,6 +5,7 @@ import { discDrawing } from "./disc_drawing.js";
 import { openFindings } from "./findings.js";
 import { Hands } from "./hands.js";
 import { openKeys } from "./keys.js";
+import { openOrdering } from "./ordering.js";
 import { openPanel } from "./panel.js";
 import { Playing } from "./playing.js";
 import { Pointing } from "./pointing.js";
@@ -27,6 +28,7 @@ export function openDisc(data) {
   const pointing = new Pointing(state, { drawn, view, hands, chart, seek });
   openKeys([stage, chart.scroll], state, { view, pointing, playing });
   openFindings(state, { drawn, view, chart });
+  openOrdering(state);
   find("#nearer").addEventListener("click", () => view.stepBy(1));
   find("#farther").addEventListener("click", () => view.stepBy(-1));
   find("#whole").addEventListener("click", () => view.whole());

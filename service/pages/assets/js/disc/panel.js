@@ -12,6 +12,7 @@ export function openPanel(state) {
   const show = () => {
     const thing = state.pointed ?? state.chosen;
     brief.textContent = thing === null ? none.textContent : labelOf(thing, state);
+    delete panel.dataset.thing;
     if (thing === null) return panel.replaceChildren(none);
     const rows = thing.kind === "projection" ? projectionRows(thing, state) : leftOutRows(thing, state);
     panel.replaceChildren(

@@ -77,13 +77,20 @@ export class Pointing {
       const at = onDrawing(thing.radius_mm, thing.angle_deg);
       return Math.hypot(at[0] - x, at[1] - y);
     };
-    return this.#nearest(distanceTo, reach(event) / this.#view.pixelsPerMm);
+    return this.#nearest(distanceTo, reach(event) / this.#view.pixelsPerMm) ?? this.#hit(event, this.#drawn.things);
   }
 
   #onChart(event) {
     const chart = this.#chart;
     const [x, y] = chart.at(event);
-    return this.#nearest((thing) => Math.hypot(thing.turned_deg * chart.pxPerDeg - x, chart.yOf(thing.radius_mm) - y), reach(event));
+    const distanceTo = (thing) => Math.hypot(thing.turned_deg * chart.pxPerDeg - x, chart.yOf(thing.radius_mm) - y);
+    return this.#nearest(distanceTo, reach(event)) ?? this.#hit(event, chart.things);
+  }
+
+  // Seen from near, an opening is longer than the reach of its working edge: then what is hit is meant.
+  #hit(event, things) {
+    const element = event.target.closest(".projection, .left-out");
+    return element === null ? null : this.#all().find((thing) => things.get(thing) === element) ?? null;
   }
 
   #listenOnDisc() {

@@ -4,10 +4,11 @@ import { ask, Problem } from "../asking.js";
 import { clearFaults, showFault } from "./faults.js";
 import { bodyOf } from "./fields.js";
 import { showLink } from "./link.js";
+import { text } from "../texts.js";
 
 // Sent again after a lost connection, the same words under the same name are done once.
 const names = new WeakMap();
-function nameFor(form, body) {
+export function nameFor(form, body) {
   const words = JSON.stringify(body);
   const kept = names.get(form);
   if (kept?.words === words) return kept.name;
@@ -29,8 +30,10 @@ async function send(form, address) {
 // The page may have been made anew around the form meanwhile, or hold it no more.
 function showFaultOf(form, fault) {
   const shown = form.isConnected ? form : find(`form[data-do="${form.dataset.do}"]`);
-  if (shown === null) say(fault.message);
-  else showFault(shown, fault);
+  if (shown !== null) return showFault(shown, fault);
+  const place = find("#not-done");
+  place.textContent = text("orders.not_done", { why: fault.message });
+  place.focus();
 }
 
 // Sends the form when it is asked to, each time once; `done` shows the order as it is then.
@@ -40,6 +43,7 @@ export function wireForm(form, address, done) {
     const button = find("button[type=submit]", form);
     if (button.disabled) return;
     clearFaults(form);
+    find("#not-done").textContent = "";
     button.disabled = true;
     try {
       await send(form, address);

@@ -1,0 +1,52 @@
+// The disc that is shown is ordered: the tune and the settings it was made from go to the API with what the form says.
+import { find, pageData } from "../dom.js";
+import { ask, Problem } from "../asking.js";
+import { clearFaults, showFault } from "../orders/faults.js";
+import { bodyOf } from "../orders/fields.js";
+import { nameFor } from "../orders/sending.js";
+import { text } from "../texts.js";
+
+// What a layout was made from, byte for byte.
+async function broughtFor(address) {
+  let answer;
+  try {
+    answer = await fetch(address);
+  } catch {
+    throw new Problem({ detail: text("common.unreachable") });
+  }
+  if (!answer.ok) throw new Problem((await answer.json().catch(() => null)) ?? { detail: text("common.unexpected", { status: answer.status }) });
+  return answer.blob();
+}
+
+async function send(form, fingerprint) {
+  const { order, parts } = pageData("ordering-data");
+  const asked = { ...order, ...bodyOf(form) };
+  const base = `/v1/layouts/${fingerprint}`;
+  const [tune, settings] = await Promise.all([broughtFor(`${base}/tune.mid`), broughtFor(`${base}/settings.json`)]);
+  const body = new FormData();
+  body.append("order", new Blob([JSON.stringify(asked)], { type: "application/json" }));
+  body.append("tune", tune, "tune.mid");
+  body.append("settings", settings);
+  for (const [name, words] of Object.entries(parts)) body.append(name, new Blob([words], { type: "application/json" }));
+  const headers = { "Idempotency-Key": `"${nameFor(form, { asked, fingerprint })}"` };
+  return (await ask("POST", "/v1/orders", { form: body, headers })).value;
+}
+
+// `state` is the page's: rulings may have put another disc into it meanwhile.
+export function openOrdering(state) {
+  const form = find("#ordering");
+  form?.addEventListener("submit", async (event) => {
+    event.preventDefault();
+    const button = find("button[type=submit]", form);
+    if (button.disabled) return;
+    clearFaults(form);
+    button.disabled = true;
+    try {
+      location.assign(`/orders/${(await send(form, state.layout.fingerprint)).id}`);
+    } catch (fault) {
+      if (!(fault instanceof Problem)) throw fault;
+      button.disabled = false;
+      showFault(form, fault);
+    }
+  });
+}

@@ -1,0 +1,34 @@
+"""What axe-core says of a page: its rules of WCAG 2.0 to 2.2, A and AA, contrast among them."""
+
+from importlib.resources import files
+from typing import Any
+
+from playwright.sync_api import Page
+
+AXE = files("axe_playwright_python").joinpath("axe.min.js").read_text(encoding="utf-8")  # MPL 2.0
+RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa"]
+GRAVE = ("serious", "critical")
+ASK_AXE = """rules => axe.run(document, {
+  runOnly: rules, resultTypes: ["violations"], rules: {"color-contrast": {enabled: false}}
+})"""
+ASK_CONTRAST = """([alike, most]) => {
+  if (alike) [...document.querySelectorAll(alike)].slice(most).forEach((one) => one.remove());
+  return axe.run(document, {runOnly: {type: "rule", values: ["color-contrast"]}, resultTypes: ["violations"]});
+}"""
+MOST_ALIKE = 6  # of parts made from one template; contrast takes a millisecond for each element
+
+
+def told(answer: Any) -> list[str]:
+    """The grave violations of an answer of axe, in words."""
+    return [
+        f"{one['id']} ({one['impact']}): {node['target']} {node['failureSummary']}"
+        for one in answer["violations"]
+        if one["impact"] in GRAVE
+        for node in one["nodes"]
+    ]
+
+
+def faults_of(page: Page) -> list[str]:
+    """The grave violations of all rules on a page as it stands, in the colours it has."""
+    page.evaluate(AXE)
+    return told(page.evaluate(ASK_AXE, RULES)) + told(page.evaluate(ASK_CONTRAST, ["", MOST_ALIKE]))
