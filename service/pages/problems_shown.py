@@ -6,6 +6,7 @@ from flask import Flask, Response, request
 
 from service.api.media import prefers_html
 from service.api.problems import PROBLEM_MEDIA_TYPE
+from service.api.proofs import PAGE as PROOFS
 from service.pages.rendering import page
 
 API = "/v1/"
@@ -23,7 +24,7 @@ def show_problems(app: Flask) -> None:
             response.vary.add("Accept")
             return response
         problem = json.loads(response.get_data())
-        template = "sign_in.html" if response.status_code == UNAUTHORIZED else "problem.html"
+        template = _template_for(request.path, response.status_code)
         query = request.query_string.decode("latin-1")
         shown = page(
             request,
@@ -37,3 +38,10 @@ def show_problems(app: Flask) -> None:
                 shown.headers[name] = response.headers[name]
         shown.vary.add("Accept")
         return shown
+
+
+def _template_for(path: str, status: int) -> str:
+    """A customer with a proof link gets no way into the shop, whatever goes wrong."""
+    if path == PROOFS or path.startswith(f"{PROOFS}/"):
+        return "proof_refused.html"
+    return "sign_in.html" if status == UNAUTHORIZED else "problem.html"

@@ -1,21 +1,27 @@
 """/proof/<text>: what a customer with a signed link sees and hears of an order, and where they say yes or no."""
 
-import json
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import Annotated
 
 from flask import Blueprint, Request, Response, request
+from pydantic import Field
 
+from layout.documents.reading import Part
+from layout.documents.settings import MOST_DISCS
 from service.api.asking import open_but_counted
 from service.api.media import prefers_html
-from service.api.order_files import file_of
+from service.api.problems import ProblemError
 from service.api.proofs import PAGE, proof_address, proof_of, proof_shown, waits_for_decision
+from service.api.request_models import read_arguments
 from service.orders.finding import verdicts_on
 from service.orders.proofs import Proof, ProofLinks
 from service.orders.states import EventType, State
 from service.orders.views import EventView, OrderView, PlanView
-from service.pages.disc_told import FindingTold, findings_of
+from service.pages.disc_shown import ShownDisc
+from service.pages.orders_discs import disc_of_plan
 from service.pages.orders_told import Moment, moment
 from service.pages.page_views import gives_page
+from service.pages.proof_told import customer_data, found_of, played_of
 from service.pages.rendering import page
 from service.pages.texts import text_of
 from service.parts import Parts
@@ -23,19 +29,10 @@ from service.parts import Parts
 NOT_TO_FIND = "noindex, nofollow"  # X-Robots-Tag: who has the link sees the order, so it is in no list of links
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class ProofDisc:
-    """A disc as a customer sees it: its picture, its sound, how many notes it plays, what was found."""
+class ProofQuery(Part):
+    """Which disc of a proof is shown."""
 
-    number: int
-    of: int
-    picture: str
-    plays: str
-    written: str
-    kept_count: int
-    asked_count: int
-    good_to_cut: bool
-    findings: tuple[tuple[str, tuple[FindingTold, ...]], ...]
+    disc: Annotated[int, Field(ge=1, le=MOST_DISCS)] = 1
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -77,17 +74,26 @@ def _led(text: str) -> Response:
 
 def _page(parts: Parts, proof: Proof, text: str, asked: Request) -> Response:
     order, plan = proof_shown(parts, proof)
+    number = read_arguments(asked, ProofQuery).disc
+    if number > len(plan.told["discs"]):
+        raise ProblemError(name="route-unknown", detail=f"this proof has no disc {number}")
+    shown = _shown(parts, order, plan, number, text)
     with parts.store.reading() as session:
         said = verdicts_on(session, proof.order_id, proof.revision)
     return page(
         asked,
         "proof.html",
-        scripts=("orders",),
+        scripts=("orders", "disc"),
         title=plan.told["title"],
         order=order,
         waits=waits_for_decision(order, proof),
         standing=text_of(f"proof.{standing_of(order, proof)}"),
-        discs=_discs(parts, plan, text),
+        discs=[(disc["number"], f"{asked.path}?disc={disc['number']}") for disc in plan.told["discs"]],
+        number=number,
+        shown=shown,
+        played=played_of(shown.report),
+        found=found_of(shown.layout),
+        disc_data=customer_data(shown),
         verdicts=[_told(verdict) for verdict in said],
         data={"verdict": f"{proof_address(text)}/verdict"},
     )
@@ -109,26 +115,15 @@ def standing_of(order: OrderView, proof: Proof) -> str:
     return "released" if order.state == State.RELEASED else "anew"
 
 
-def _discs(parts: Parts, plan: PlanView, text: str) -> list[ProofDisc]:
-    discs = []
-    for disc in plan.told["discs"]:
-        number = disc["number"]
-        files = f"{proof_address(text)}/files/{number}"
-        layout = json.loads(parts.files.read(file_of(plan, number, "layout.json").sha256))
-        discs.append(
-            ProofDisc(
-                number=number,
-                of=disc["of"],
-                picture=f"{files}/disc.svg",
-                plays=f"{files}/hearing.wav?of=disc",
-                written=f"{files}/hearing.wav?of=written",
-                kept_count=disc["kept_count"],
-                asked_count=disc["asked_count"],
-                good_to_cut=disc["good_to_cut"],
-                findings=findings_of(layout),
-            )
-        )
-    return discs
+def _shown(parts: Parts, order: OrderView, plan: PlanView, number: int, text: str) -> ShownDisc:
+    """A disc of a proof: the files and the sound are those that the link gives."""
+    files = f"{proof_address(text)}/files/{number}"
+    return replace(
+        disc_of_plan(parts, order.id, plan, number),
+        files={"disc.svg": f"{files}/disc.svg"},
+        hearing={of: f"{files}/hearing.wav?of={of}" for of in ("disc", "written")},
+        despite_findings=None,
+    )
 
 
 def _told(verdict: EventView) -> VerdictTold:

@@ -11,7 +11,7 @@ import pytest
 
 from service.parts import Parts
 from tests.service.api.guarded import problem_of
-from tests.service.api.test_orders import NO_ROOM, Shop
+from tests.service.api.test_orders import MINE, NO_ROOM, Shop
 from tests.service.pages.pages_read import Element, page_read
 from tests.service.pages.test_own_routes import HTML
 from tests.service.shop import planned
@@ -35,6 +35,22 @@ def seen(shop: Shop, path: str) -> Element:
     return page_read(answer.text)
 
 
+def data_of(page: Element) -> Any:
+    """What the scripts that turn the disc are given."""
+    block = page.one("script", id="disc-data").children[0]
+    assert isinstance(block, str)
+    return json.loads(block)
+
+
+def file_of(shop: Shop, order_id: str, name: str) -> Any:
+    """A file of the order's first disc, as the shop reads it."""
+    return shop.http.get(f"/v1/orders/{order_id}/plans/1/files/1/{name}", headers=shop.shop).get_json()
+
+
+def layout_of(shop: Shop, order_id: str) -> Any:
+    return file_of(shop, order_id, "layout.json")
+
+
 def say(shop: Shop, page: Element, **said: str) -> None:
     block = page.one("script", id="proof-data").children[0]
     assert isinstance(block, str)
@@ -51,13 +67,82 @@ def test_the_link_that_is_made_leads_a_customer_without_a_key_to_the_disc_and_it
     assert page.one("h1").text == "Turning Day at Wickenbeck"
     assert "for the movement fernhollow-31" in page.text
     assert "Reference: W-1001." in page.text
-    assert shop.http.get(page.one("img").attributes["src"]).content_type == "image/svg+xml"
-    sounds = [audio.attributes["src"] for audio in page.all("audio")]
-    assert [sound.rpartition("?")[2] for sound in sounds] == ["of=disc", "of=written"]
-    assert {shop.http.head(sound).content_type for sound in sounds} == {"audio/wav"}
+    picture = page.one("div", id="stage").one("img").attributes["src"]
+    assert shop.http.get(picture).content_type == "image/svg+xml"
+    assert picture in [link.attributes["href"] for link in page.all("a")]
+    sounds = data_of(page)["hearing"]
+    assert {of: sound.rpartition("?")[2] for of, sound in sounds.items()} == {
+        "disc": "of=disc",
+        "written": "of=written",
+    }
+    assert {shop.http.head(sound).content_type for sound in sounds.values()} == {"audio/wav"}
     told = shop.seen(order_id)["plan"]["discs"][0]
     assert f"It plays {told['kept_count']} of the {told['asked_count']} notes" in page.text
     assert "Nothing was found against it." in page.text
+
+
+def test_the_disc_that_turns_for_a_customer_is_the_one_that_was_planned(shop: Shop) -> None:
+    order_id = shop.ready()
+
+    shown = data_of(seen(shop, link_to(shop, order_id)))
+
+    layout = layout_of(shop, order_id)
+    assert [(one["track"], one["angle_deg"]) for one in shown["layout"]["projections"]] == [
+        (one["track"], round(one["angle_deg"], 3)) for one in layout["projections"]
+    ]
+    assert [one["onset_s"] for one in shown["layout"]["notes"]] == [round(n["onset_s"], 3) for n in layout["notes"]]
+
+
+def test_a_proof_tells_nothing_that_is_the_shop_s_own(shop: Shop) -> None:
+    ruled = [{"note": 5, "do": "leave-out"}, {"note": 9, "do": "leave-out"}]
+    order_id = shop.ready({**MINE, "settings": {"rulings": ruled}})
+    layout = layout_of(shop, order_id)
+    assert sum(one["reason"] == "ruled-out" for one in layout["left_out"]) == 2  # there is something to keep back
+    order = shop.seen(order_id)
+
+    answer = shop.http.get(link_to(shop, order_id), headers=HTML)
+
+    data = data_of(page_read(answer.text))
+    assert data["rulings_at"] is None
+    assert data["layout"].keys() & {"fingerprint", "worth", "good_to_cut"} == set()
+    assert {name for note in data["layout"]["notes"] for name in note} == {"onset_s", "pitch", "voice"}
+    assert {one["reason"] for one in data["layout"]["left_out"]} == {
+        one["reason"] for one in layout["left_out"] if one["reason"] != "ruled-out"
+    }
+    teeth = [tooth for track in data["movement"]["tracks"] for tooth in track["teeth"]]
+    assert {(tooth["cents"], tooth["damped"]) for tooth in teeth} == {(0, True)}
+    assert "2 notes, which were taken out by hand" in answer.text
+    for own in (
+        order_id,
+        layout["fingerprint"],
+        order["tune"]["sha256"],
+        order["plan"]["tag"],
+        "fibre-laser",
+        "/v1/orders",
+    ):
+        assert own not in answer.text
+    assert file_of(shop, order_id, "making.json")["currency"] == "EUR"
+    assert "EUR" not in answer.text
+
+
+def test_every_disc_of_a_set_is_shown_and_the_decision_is_about_all_of_them(shop: Shop) -> None:
+    order_id = shop.ready({**MINE, "settings": {"speed": {"mode": "factor", "factor": 0.5}, "discs": 2}})
+    path = link_to(shop, order_id)
+
+    first, second = seen(shop, path), seen(shop, f"{path}?disc=2")
+
+    for number, page in enumerate((first, second), start=1):
+        links = page.one("nav").all("a")
+        assert [link.attributes["href"] for link in links] == [f"{path}?disc=1", f"{path}?disc=2"]
+        assert [link.text for link in links if "aria-current" in link.attributes] == [f"Disc {number} of 2"]
+        assert page.one("h2", id="drawing-title").text == f"Disc {number} of 2"
+        assert f"/files/{number}/hearing.wav" in data_of(page)["hearing"]["disc"]
+        assert "This is about all 2 discs." in page.one("form", id="verdict").text
+    assert data_of(first)["layout"]["projections"] != data_of(second)["layout"]["projections"]
+    for query in ("disc=3", "disc=0", "disc=x"):
+        refused = shop.http.get(f"{path}?{query}", headers=HTML)
+        assert refused.status_code in (400, 404)
+        assert "disc.dxf" not in refused.text  # what the order holds beside
 
 
 def test_a_customer_gets_no_way_into_the_shop(shop: Shop) -> None:
@@ -67,7 +152,7 @@ def test_a_customer_gets_no_way_into_the_shop(shop: Shop) -> None:
 
     page = page_read(answer.text)
     links = [link.attributes["href"] for link in page.all("a")]
-    assert [link for link in links if not link.startswith(("#content", path.replace("/proof/", "/v1/proofs/")))] == []
+    assert [link for link in links if not link.startswith(("#", path.replace("/proof/", "/v1/proofs/")))] == []
     assert answer.headers["X-Robots-Tag"] == "noindex, nofollow"
     assert answer.headers["Referrer-Policy"] == "same-origin"
     assert answer.headers["Cache-Control"] == "private, no-cache"
@@ -90,11 +175,13 @@ def test_what_was_found_is_told_in_words_before_a_customer_decides(shop: Shop) -
 
     page = seen(shop, link_to(shop, order_id))
 
-    layout: Any = shop.http.get(f"/v1/orders/{order_id}/plans/1/files/1/layout.json", headers=shop.web).json
-    told = page.one("ul", class_="found").all("li")
-    assert len(told) == len(layout["findings"]) == 1
-    assert told[0].text.startswith(" ".join(layout["findings"][0]["message"].split()))
-    assert "1 error: so the disc must not be cut" in page.text
+    (finding,) = layout_of(shop, order_id)["findings"]
+    (told,) = page.one("ul", class_="found error").all("li")
+    assert finding["code"] == "music-too-long"
+    assert told.text.startswith("The music is longer than one turn of this movement.")
+    assert finding["message"] not in page.text
+    assert told.one("button", data_finding="0").attributes["aria-label"] == "Show place 1 on the disc"
+    assert "Against cutting it as it is" in page.text
 
 
 def test_a_decision_is_asked_for_with_a_name_and_shown_once_it_was_said(shop: Shop) -> None:
@@ -163,20 +250,34 @@ def test_a_link_that_is_none_or_too_old_or_of_a_deleted_order_is_told_of_in_a_pa
     with closing(Shop(replace(parts, settings=replace(parts.settings, work=work)))) as shop:
         too_old = shop.http.get(link_to(shop, shop.ready()), headers=HTML)
 
-    for answer, words in (
-        (cut_off, "this is no link of ours; was it cut off?"),
-        (deleted, "what this link showed is deleted"),
-        (too_old, "this link is too old; ask the shop for a new one"),
+    for answer, words, what_to_do in (
+        (cut_off, "This is no link of ours; was it cut off?", "Copy it from the message, all of it."),
+        (deleted, "What this link showed is deleted.", "The shop has deleted this order"),
+        (too_old, "This link is too old; ask the shop for a new one.", "a link that ends takes nothing back"),
     ):
         assert (answer.status_code, answer.mimetype) == (404, "text/html")
-        assert words in page_read(answer.text).text
+        page = page_read(answer.text)
+        assert words in page.text
+        assert what_to_do in page.text
+        assert [link.attributes["href"] for link in page.all("a")] == ["#content"]  # no way into the shop
+
+
+@pytest.mark.parametrize("path", ["/proof", "/proof/", "/proof/a/b"])
+def test_what_is_not_even_like_a_link_to_a_proof_shows_no_way_into_the_shop(shop: Shop, path: str) -> None:
+    answer = shop.http.get(path, headers=HTML)
+
+    assert answer.status_code == 404
+    assert not page_read(answer.text).all("nav")
 
 
 def test_every_field_of_a_proof_is_named_and_nothing_runs_inline(shop: Shop) -> None:
     page = seen(shop, link_to(shop, shop.ready(NO_ROOM)))
 
-    named = {label.attributes["for"] for label in page.all("label")}
-    assert {one.attributes["id"] for tag in ("input", "textarea") for one in page.all(tag)} == named
+    named = {label.attributes["for"] for label in page.all("label") if "for" in label.attributes}
+    within = {one.attributes["value"] for label in page.all("label") for one in label.all("input")}
+    assert within == {"disc", "written"}
+    fields = [one for tag in ("input", "textarea", "select") for one in page.all(tag)]
+    assert {one.attributes["id"] for one in fields if one.attributes.get("name") != "hear"} == named
     assert not [one for one in page.everything() if any(n == "style" or n[:2] == "on" for n in one.attributes)]
     ids = [one.attributes["id"] for one in page.everything() if "id" in one.attributes]
     assert len(ids) == len(set(ids))

@@ -14,6 +14,7 @@ find("#verdict")?.addEventListener("submit", async (event) => {
   button.disabled = true;
   try {
     await ask("POST", verdict, { json: bodyOf(form), open: true });
+    history.replaceState(null, "", "#said-so-far"); // where the page then begins to be read
     location.reload();
   } catch (fault) {
     if (!(fault instanceof Problem)) throw fault;
