@@ -1,10 +1,12 @@
 """The cutter document: the machine that cuts, its numbers and its layer names."""
 
 from collections.abc import Mapping
-from typing import Annotated, Literal, Self
+from types import MappingProxyType
+from typing import Annotated, Any, Literal, Self
 
-from pydantic import Field, model_validator
+from pydantic import ConfigDict, Field, model_validator
 
+from layout.documents.conditions import EMPTY, LEFT_OUT, NO, STATED, where
 from layout.documents.making import (
     Bridges,
     FeatureRules,
@@ -25,6 +27,7 @@ from layout.documents.reading import (
     Offset,
     Part,
     Title,
+    Within,
     check_document,
     read_json,
 )
@@ -43,6 +46,8 @@ LAYER_COLOURS = {
     "FOLDS": 140,
     "TRACKS": 9,
 }
+# The face that lies above, by the way a press forms its tabs: those stand on the star side.
+UPPER_FACE = MappingProxyType({"up": "star-side", "down": "label-side"})
 SAME_PLACE_MM = 1e-6  # mm; a nanometre, what rounding in a written document may leave
 WIDEST_WEB_MM = 50.0  # mm; a hundred times a usual web, keeps a document from being made slow
 MOST_TOOLS = 60  # tools; more than a press's magazine holds, keeps a document small
@@ -50,6 +55,15 @@ MOST_TOOLS = 60  # tools; more than a press's magazine holds, keeps a document s
 
 class Fold(Part):
     """How this laser's shop folds a standing projection out of a U-shaped cut."""
+
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                where("slit", "channel", {"slit_width_mm": STATED}),
+                where("slit", "centre-line", {"slit_width_mm": LEFT_OUT, "relief_width_mm": LEFT_OUT}),
+            ]
+        }
+    )
 
     inside_radius_mm: Length
     fold_side: Literal["behind", "ahead"]
@@ -81,6 +95,16 @@ class Tool(Part):
     holes and slots; it has round ends whichever way it is longer, is round where both sizes are equal,
     and has no working edge.
     """
+
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                where("makes", "lance", {"edge_ahead_mm": STATED, "tab_width_mm": STATED, "tab_depth_mm": STATED}),
+                where("makes", "slot", {"edge_ahead_mm": STATED}),
+                where("makes", "hole", {"tab_width_mm": LEFT_OUT, "tab_depth_mm": LEFT_OUT}),
+            ]
+        }
+    )
 
     tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$")]
     title: Title
@@ -129,6 +153,9 @@ class Layer(Part):
     colour: Annotated[int, Field(ge=1, le=255)]
 
 
+Layers = Annotated[dict[str, Layer], Field(json_schema_extra={"propertyNames": {"enum": [*LAYER_COLOURS]}})]
+
+
 def layer_of(layers: Mapping[str, Layer], ours: str) -> Layer:
     """The layer name and colour wanted for one of our layer names: ours where nothing else is."""
     return layers.get(ours) or Layer(name=ours, colour=LAYER_COLOURS[ours])
@@ -147,6 +174,19 @@ def check_layers(layers: Mapping[str, Layer]) -> None:
         seen[wanted.casefold()] = ours
 
 
+def _by_its_kind(schema: dict[str, Any]) -> None:
+    """Say which parts go with which kind, and that `drawn_from` may be left out where the press states how it forms."""
+    schema["required"].remove("drawn_from")
+    press = {"type": "object", "properties": {"forms": {"enum": list(UPPER_FACE)}}, "required": ["forms"]}
+    schema["allOf"] = [
+        where("kind", "laser", {"tools": EMPTY, "press": LEFT_OUT}),
+        where(
+            "kind", "punch-press", {"fold": LEFT_OUT, "lead_in": LEFT_OUT, "bridges": LEFT_OUT, "kerf_compensated": NO}
+        ),
+        {"if": {"not": {"properties": {"press": press}, "required": ["press"]}}, "then": {"required": ["drawn_from"]}},
+    ]
+
+
 class Cutter(Part):
     """A cutting machine and what it can do to the sheet.
 
@@ -154,20 +194,22 @@ class Cutter(Part):
     is drawn; formed down, the label side.
     """
 
+    model_config = ConfigDict(json_schema_extra=_by_its_kind)
+
     format: Literal["discwright-cutter/1"]
     id: Identifier
     title: Title
     kind: Literal["laser", "punch-press"]
     kerf_mm: LengthOrZero
     kerf_compensated: bool = False
-    min_web_mm: Annotated[Length, Field(le=WIDEST_WEB_MM)]
+    min_web_mm: Annotated[Length, Within(le=WIDEST_WEB_MM)]
     min_slot_mm: Length
     position_tolerance_mm: LengthOrZero
-    angle_tolerance_deg: Annotated[Angle, Field(ge=0)] = 0.0
+    angle_tolerance_deg: Annotated[Angle, Within(ge=0)] = 0.0
     drawn_from: Literal["label-side", "star-side"]
     fold: Fold | None = None
     tools: Annotated[tuple[Tool, ...], Field(max_length=MOST_TOOLS)] = ()
-    layers: dict[str, Layer] = Field(default_factory=dict)
+    layers: Layers = Field(default_factory=dict)
     drawing_release: Literal["R2010", "R12"] = "R2010"
     labels: bool = True
     burr_side: Literal["label-side", "star-side"] | None = None
@@ -224,5 +266,5 @@ def _showing_the_upper_face(value: object) -> object:
     press = value.get("press") if isinstance(value, Mapping) else None
     if not isinstance(value, Mapping) or not isinstance(press, Mapping) or "drawn_from" in value:
         return value
-    side = {"up": "star-side", "down": "label-side"}.get(str(press.get("forms")))
+    side = UPPER_FACE.get(str(press.get("forms")))
     return value if side is None else {**value, "drawn_from": side}

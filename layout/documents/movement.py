@@ -9,8 +9,9 @@ from collections.abc import Mapping
 from itertools import pairwise
 from typing import Annotated, Any, Literal, Self
 
-from pydantic import Discriminator, Field, PrivateAttr, Tag, model_validator
+from pydantic import ConfigDict, Discriminator, Field, PrivateAttr, Tag, model_validator
 
+from layout.documents.conditions import STATED, beside, where
 from layout.documents.drive import Drive
 from layout.documents.pitch import key_of
 from layout.documents.reading import (
@@ -108,6 +109,15 @@ class MeasuredStarWheel(Part):
 class Projection(Part):
     """What turns a star wheel: standing metal, or a slot the point falls into."""
 
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                where("kind", "standing", {"depth_mm": STATED}),
+                where("kind", "slot", {"length_mm": STATED, "forming": {"const": "any"}}),
+            ]
+        }
+    )
+
     kind: Literal["standing", "slot"]
     width_mm: Length
     depth_mm: Length | None = None
@@ -129,6 +139,15 @@ class Projection(Part):
 
 class Track(Part):
     """A circle on the disc served by one star wheel; track 1 is the innermost."""
+
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                beside("engagement_arc_mm", {"release_arc_mm": STATED}),
+                beside("release_arc_mm", {"engagement_arc_mm": STATED}),
+            ]
+        }
+    )
 
     track: Annotated[int, Field(ge=1)]
     radius_mm: Length
