@@ -21,6 +21,7 @@ from layout.documents.making import (
 )
 from layout.documents.reading import (
     Angle,
+    At,
     Identifier,
     Length,
     LengthOrZero,
@@ -78,11 +79,11 @@ class Fold(Part):
     @model_validator(mode="after")
     def _channel_has_a_width(self) -> Self:
         if self.slit == "channel" and self.slit_width_mm is None:
-            raise ValueError('slit "channel" needs slit_width_mm')
+            raise At("/slit_width_mm", 'slit "channel" needs slit_width_mm')
         if self.slit == "centre-line" and self.slit_width_mm is not None:
-            raise ValueError('slit "centre-line" is as wide as the kerf; leave slit_width_mm out')
+            raise At("/slit_width_mm", 'slit "centre-line" is as wide as the kerf; leave slit_width_mm out')
         if self.slit == "centre-line" and self.relief_width_mm is not None:
-            raise ValueError('slit "centre-line" has no room for relief_width_mm; use a channel')
+            raise At("/relief_width_mm", 'slit "centre-line" has no room for relief_width_mm; use a channel')
         return self
 
 
@@ -120,11 +121,11 @@ class Tool(Part):
     def _hole_tools_only_strike_out(self) -> Self:
         if self.makes != "hole":
             if "edge_ahead_mm" not in self.model_fields_set:
-                raise ValueError(f"{self.makes} tool {self.tool} needs edge_ahead_mm")
+                raise At("/edge_ahead_mm", f"{self.makes} tool {self.tool} needs edge_ahead_mm")
         elif self.edge_ahead_mm != 0:
-            raise ValueError(f"hole tool {self.tool} has no working edge; leave edge_ahead_mm out")
+            raise At("/edge_ahead_mm", f"hole tool {self.tool} has no working edge; leave edge_ahead_mm out")
         elif self.tab_width_mm is not None or self.tab_depth_mm is not None:
-            raise ValueError(f"hole tool {self.tool} forms no tab; leave tab_width_mm and tab_depth_mm out")
+            raise At("/tab_width_mm", f"hole tool {self.tool} forms no tab; leave tab_width_mm and tab_depth_mm out")
         return self
 
     @model_validator(mode="after")
@@ -133,16 +134,20 @@ class Tool(Part):
             return self
         if self.makes == "lance":
             if self.tab_width_mm is None or self.tab_depth_mm is None:
-                raise ValueError(f"lance tool {self.tool} needs tab_width_mm and tab_depth_mm")
+                raise At("/tab_width_mm", f"lance tool {self.tool} needs tab_width_mm and tab_depth_mm")
             if self.footprint_width_mm < self.tab_width_mm:
-                raise ValueError(f"tool {self.tool}: footprint_width_mm is below tab_width_mm")
+                raise At("/footprint_width_mm", f"tool {self.tool}: footprint_width_mm is below tab_width_mm")
             if abs(self.edge_ahead_mm) > self.footprint_length_mm / 2:
-                raise ValueError(f"tool {self.tool}: edge_ahead_mm puts the working edge outside the footprint")
+                raise At(
+                    "/edge_ahead_mm", f"tool {self.tool}: edge_ahead_mm puts the working edge outside the footprint"
+                )
         elif self.footprint_length_mm < self.footprint_width_mm:
-            raise ValueError(f"slot tool {self.tool}: footprint_length_mm is below footprint_width_mm")
+            raise At("/footprint_length_mm", f"slot tool {self.tool}: footprint_length_mm is below footprint_width_mm")
         elif abs(self.edge_ahead_mm + self.footprint_length_mm / 2) > SAME_PLACE_MM:
             # A slot works with its trailing end, and its footprint is centred on the strike point.
-            raise ValueError(f"slot tool {self.tool}: edge_ahead_mm must be minus half of footprint_length_mm")
+            raise At(
+                "/edge_ahead_mm", f"slot tool {self.tool}: edge_ahead_mm must be minus half of footprint_length_mm"
+            )
         return self
 
 
@@ -225,25 +230,31 @@ class Cutter(Part):
     @model_validator(mode="after")
     def _parts_of_its_kind(self) -> Self:
         if self.kind == "punch-press" and self.fold is not None:
-            raise ValueError("a punch press lances; leave fold out")
+            raise At("/fold", "a punch press lances; leave fold out")
         if self.kind == "laser" and self.tools:
-            raise ValueError("a laser has no tools; leave tools out")
+            raise At("/tools", "a laser has no tools; leave tools out")
         if self.kind == "laser" and self.press is not None:
-            raise ValueError("a laser is no press; leave press out")
+            raise At("/press", "a laser is no press; leave press out")
         if self.kind == "punch-press" and (self.lead_in is not None or self.bridges is not None):
-            raise ValueError("a punch press has no lead_in and no bridges; leave them out")
+            raise At(
+                "/bridges" if self.lead_in is None else "/lead_in",
+                "a punch press has no lead_in and no bridges; leave them out",
+            )
         if self.kerf_compensated and (self.kind == "punch-press" or self.kerf_mm == 0):
-            raise ValueError("kerf_compensated true needs a laser with kerf_mm above 0")
+            raise At("/kerf_compensated", "kerf_compensated true needs a laser with kerf_mm above 0")
         if self.fold is not None and self.fold.slit == "centre-line" and self.kerf_mm == 0:
-            raise ValueError('slit "centre-line" needs kerf_mm above 0')
+            raise At("/kerf_mm", 'slit "centre-line" needs kerf_mm above 0')
         numbers = [tool.tool for tool in self.tools]
         if len(set(numbers)) != len(numbers):
-            raise ValueError("two tools have the same name")
+            raise At("/tools", "two tools have the same name")
         return self
 
     @model_validator(mode="after")
     def _layers_stay_apart(self) -> Self:
-        check_layers(self.layers)
+        try:
+            check_layers(self.layers)
+        except ValueError as error:
+            raise At("/layers", str(error)) from error
         return self
 
     def layer(self, ours: str) -> Layer:

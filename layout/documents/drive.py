@@ -4,7 +4,7 @@ from typing import Annotated, Self
 
 from pydantic import Field, model_validator
 
-from layout.documents.reading import Length, NotNegative, Part, Positive, Within
+from layout.documents.reading import At, Length, NotNegative, Part, Positive, Within
 
 MOST_TURNS = 100.0  # turns; a barrel has a handful
 MOST_STAGES = 12  # stages of a train; clockwork has up to six
@@ -40,7 +40,7 @@ class Spring(Part):
     @model_validator(mode="after")
     def _usable_are_wound(self) -> Self:
         if self.usable_turns > self.wound_turns:
-            raise ValueError("usable_turns cannot be above wound_turns")
+            raise At("/usable_turns", "usable_turns cannot be above wound_turns")
         return self
 
 

@@ -9,7 +9,7 @@ from typing import Annotated, Literal, Self
 
 from pydantic import BeforeValidator, Field, WithJsonSchema, model_validator
 
-from layout.documents.reading import Angle, Length, Part, Positive, PositiveAngle, TimeOrZero, Within
+from layout.documents.reading import Angle, At, Length, Part, Positive, PositiveAngle, TimeOrZero, Within
 
 MOST_BRIDGES = 24  # bridges round the rim; a few hold a disc
 MOST_SLUG_BRIDGES = 6  # bridges of one slug; one or two hold it
@@ -106,7 +106,7 @@ class FeatureRules(Part):
         for name in ("hole", "web", "edge", "slit"):
             levels = getattr(self, name)
             if not levels[0] <= levels[1] <= levels[2]:
-                raise ValueError(f"{name}: the three levels must not fall, from error over warning to advice")
+                raise At(f"/{name}", f"{name}: the three levels must not fall, from error over warning to advice")
         return self
 
 
@@ -139,9 +139,9 @@ class Press(Part):
     @model_validator(mode="after")
     def _change_names_the_tool(self) -> Self:
         if self.change_word.count("{tool}") != 1:
-            raise ValueError("change_word must hold {tool} once")
+            raise At("/change_word", "change_word must hold {tool} once")
         if "{tool}" in self.strike_word:
-            raise ValueError("strike_word cannot hold {tool}; the tool is named by change_word")
+            raise At("/strike_word", "strike_word cannot hold {tool}; the tool is named by change_word")
         return self
 
 

@@ -52,6 +52,14 @@ class Stated(Part):
     basis: Literal["measured", "calculated", "assumed"] = "measured"
 
 
+class At(ValueError):
+    """What does not go together in a part: where in the part, as a JSON pointer, and what."""
+
+    def __init__(self, pointer: str, message: str) -> None:
+        super().__init__(message)
+        self.pointer = pointer
+
+
 _JSON_NAMES = {dict: "an object", list: "a list", str: "text", bool: "true or false", type(None): "null"}
 
 
@@ -287,7 +295,11 @@ def check_document(
     try:
         return model.model_validate_json(json.dumps(_with_whole_numbers(value)), strict=True)
     except ValidationError as error:
-        problems = tuple(_problem(fault, union_tags) for fault in error.errors(include_url=False))
+        faults = error.errors(include_url=False)
+        # Items that are wrong are not counted, so that a list of them is told to be too short as well.
+        places = {fault["loc"][:end] for fault in faults for end in range(len(fault["loc"]))}
+        told = [fault for fault in faults if fault["type"] != "too_short" or fault["loc"] not in places]
+        problems = tuple(_problem(fault, union_tags) for fault in told)
         raise DocumentError(document=document, problems=problems) from error
 
 
@@ -314,6 +326,8 @@ NEEDED = {
 
 def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
     place = "".join(f"/{_escaped(str(part))}" for part in fault["loc"] if part not in union_tags)
+    raised = fault.get("ctx", {}).get("error")
+    place += raised.pointer if isinstance(raised, At) else ""
     if fault["type"] == "extra_forbidden":
         return Problem(pointer=place, message="no such field; remove it or check its spelling")
     if fault["type"] == "missing":
