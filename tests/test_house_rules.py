@@ -56,6 +56,7 @@ FIELDS_WITHOUT_UNIT = {
     "Row.coefficients": "a row of a program joins columns of any unit",
     "Row.least": "as coefficients",
     "Row.most": "as coefficients",
+    **dict.fromkeys(("Within.ge", "Within.gt", "Within.le", "Within.lt"), "in the unit of the number they bound"),
 }
 
 MACHINE_PATH = re.compile(r"(?<![\w.])/(?:home|Users|root|work|tmp)/\w|[A-Z]:\\Users|\.\./" + "shared")

@@ -8,7 +8,7 @@ import shapely
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged, told_worth, unsure_advice
 from layout.check.worth import edge_unsure_mm, feature_unsure_mm
-from layout.documents.movement import Feature
+from layout.documents.feature import Feature
 from layout.mechanics.arrays import FloatArray
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm

@@ -7,7 +7,8 @@ import numpy as np
 
 from layout.cut.plan import Circles, Entity, Outlines
 from layout.documents.cutter import SAME_PLACE_MM
-from layout.documents.movement import Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.mechanics.obround import obround_mm
 

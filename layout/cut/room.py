@@ -9,7 +9,8 @@ from shapely import affinity
 from shapely.geometry.base import BaseGeometry
 
 from layout.cut.blank import turned_mm
-from layout.documents.movement import Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import Movement
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 

@@ -9,7 +9,8 @@ import numpy as np
 from layout.cut.blank import turned_mm
 from layout.cut.plan import Circles, Entity, LayerName, Outlines
 from layout.documents.cutter import SAME_PLACE_MM, Cutter
-from layout.documents.movement import Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.mechanics.lead import clear_of_lines_mm, pierced_inside_mm
 from layout.mechanics.slugs import (

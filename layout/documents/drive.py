@@ -4,7 +4,7 @@ from typing import Annotated, Self
 
 from pydantic import Field, model_validator
 
-from layout.documents.reading import Length, NotNegative, Part, Positive
+from layout.documents.reading import At, Length, NotNegative, Part, Positive, Within
 
 MOST_TURNS = 100.0  # turns; a barrel has a handful
 MOST_STAGES = 12  # stages of a train; clockwork has up to six
@@ -20,7 +20,7 @@ LEAST_MODULUS, MOST_MODULUS = (
 )  # N/mm²; plastics to diamond, steel has 2e5
 LEAST_SPRING_MM, MOST_SPRING_MM = 1.0, 1e6  # mm of strip; a large barrel holds some metres
 
-StageRatio = Annotated[Positive, Field(ge=LEAST_STAGE, le=MOST_STAGE)]
+StageRatio = Annotated[Positive, Within(ge=LEAST_STAGE, le=MOST_STAGE)]
 
 
 class Spring(Part):
@@ -30,17 +30,17 @@ class Spring(Part):
     of those the barrel gives before the stop, or before the spring is let down no further.
     """
 
-    elastic_modulus_n_per_mm2: Annotated[Positive, Field(ge=LEAST_MODULUS, le=MOST_MODULUS)]
+    elastic_modulus_n_per_mm2: Annotated[Positive, Within(ge=LEAST_MODULUS, le=MOST_MODULUS)]
     width_mm: Length
     thickness_mm: Length
-    length_mm: Annotated[Positive, Field(ge=LEAST_SPRING_MM, le=MOST_SPRING_MM)]
-    wound_turns: Annotated[Positive, Field(ge=LEAST_TURNS, le=MOST_TURNS)]
-    usable_turns: Annotated[Positive, Field(ge=LEAST_TURNS, le=MOST_TURNS)]
+    length_mm: Annotated[Positive, Within(ge=LEAST_SPRING_MM, le=MOST_SPRING_MM)]
+    wound_turns: Annotated[Positive, Within(ge=LEAST_TURNS, le=MOST_TURNS)]
+    usable_turns: Annotated[Positive, Within(ge=LEAST_TURNS, le=MOST_TURNS)]
 
     @model_validator(mode="after")
     def _usable_are_wound(self) -> Self:
         if self.usable_turns > self.wound_turns:
-            raise ValueError("usable_turns cannot be above wound_turns")
+            raise At("/usable_turns", "usable_turns cannot be above wound_turns")
         return self
 
 
@@ -56,7 +56,7 @@ class Winding(Part):
     barrel_to_disc: Annotated[tuple[StageRatio, ...], Field(min_length=1, max_length=MOST_STAGES)]
     disc_to_brake: Annotated[tuple[StageRatio, ...], Field(max_length=MOST_STAGES)] = ()
     brake_turns_per_s: Positive | None = None
-    efficiency: Annotated[float, Field(ge=LEAST_EFFICIENCY, le=1)] | None = None
+    efficiency: Annotated[float, Within(ge=LEAST_EFFICIENCY, le=1)] | None = None
     friction_nmm: NotNegative | None = None
 
 
@@ -64,7 +64,7 @@ class TrainStage(Part):
     """One turning part of the gear train, with its turns per turn of the disc."""
 
     inertia_kg_m2: Positive
-    ratio: Annotated[Positive, Field(le=MOST_TRAIN)]
+    ratio: Annotated[Positive, Within(le=MOST_TRAIN)]
 
 
 class Drive(Part):

@@ -9,12 +9,13 @@ from typing import Annotated, Literal, Self
 
 from pydantic import BeforeValidator, Field, WithJsonSchema, model_validator
 
-from layout.documents.reading import Angle, Length, Part, Positive, PositiveAngle, TimeOrZero
+from layout.documents.reading import Angle, At, Length, Part, Positive, PositiveAngle, TimeOrZero, Within
 
 MOST_BRIDGES = 24  # bridges round the rim; a few hold a disc
 MOST_SLUG_BRIDGES = 6  # bridges of one slug; one or two hold it
 MOST_RATIO = 20.0  # times the thickness; far above any rule for sheet
 MOST_TAKE_UP_DEG = 30.0  # degrees; far more than any table has play
+MONEY_PATTERN = r"[0-9]{1,9}(\.[0-9]{1,6})?"
 
 ToleranceClass = Literal["iso-9013-1", "iso-9013-2", "iso-2768-f", "iso-2768-m", "iso-2768-c", "iso-2768-v"]
 
@@ -23,7 +24,7 @@ def _money(value: object) -> object:
     if isinstance(value, Decimal):
         return value  # a document that is checked already
     text = value if isinstance(value, str) else None
-    if text is None or re.fullmatch(r"\d{1,9}(\.\d{1,6})?", text) is None:
+    if text is None or re.fullmatch(MONEY_PATTERN, text) is None:
         raise ValueError(f'an amount is text with a decimal number, such as "12.50"; got {value!r}')
     return Decimal(text)
 
@@ -31,9 +32,9 @@ def _money(value: object) -> object:
 Money = Annotated[
     Decimal,
     BeforeValidator(_money),
-    WithJsonSchema({"type": "string", "pattern": r"^\d{1,9}(\.\d{1,6})?$"}, mode="validation"),
+    WithJsonSchema({"type": "string", "pattern": f"^{MONEY_PATTERN}$"}, mode="validation"),
 ]
-Ratio = Annotated[float, Field(gt=0, le=MOST_RATIO)]
+Ratio = Annotated[float, Within(gt=0, le=MOST_RATIO)]
 Word = Annotated[str, Field(pattern=r"^[A-Z]([A-Z0-9 .-]|\{tool\}){0,39}$")]
 
 
@@ -105,15 +106,15 @@ class FeatureRules(Part):
         for name in ("hole", "web", "edge", "slit"):
             levels = getattr(self, name)
             if not levels[0] <= levels[1] <= levels[2]:
-                raise ValueError(f"{name}: the three levels must not fall, from error over warning to advice")
+                raise At(f"/{name}", f"{name}: the three levels must not fall, from error over warning to advice")
         return self
 
 
 class NetSection(Part):
     """Least share of metal that openings may leave along any radial line and along any ring of the tracks' band."""
 
-    least_line_share: Annotated[float, Field(ge=0, le=1)]
-    least_ring_share: Annotated[float, Field(ge=0, le=1)]
+    least_line_share: Annotated[float, Within(ge=0, le=1)]
+    least_ring_share: Annotated[float, Within(ge=0, le=1)]
 
 
 class Press(Part):
@@ -127,20 +128,20 @@ class Press(Part):
     """
 
     capacity_n: Positive | None = None
-    stripping_share: Annotated[float, Field(ge=0, le=1)] = 0.2
+    stripping_share: Annotated[float, Within(ge=0, le=1)] = 0.2
     metric_word: Literal["G71", "G21"] = "G71"
     strike_word: Word = "M20"
     change_word: Word = "T{tool} M6"
     turns_one_way: bool = True
-    take_up_deg: Annotated[PositiveAngle, Field(le=MOST_TAKE_UP_DEG)] = 1.0
+    take_up_deg: Annotated[PositiveAngle, Within(le=MOST_TAKE_UP_DEG)] = 1.0
     forms: Literal["up", "down"] | None = None
 
     @model_validator(mode="after")
     def _change_names_the_tool(self) -> Self:
         if self.change_word.count("{tool}") != 1:
-            raise ValueError("change_word must hold {tool} once")
+            raise At("/change_word", "change_word must hold {tool} once")
         if "{tool}" in self.strike_word:
-            raise ValueError("strike_word cannot hold {tool}; the tool is named by change_word")
+            raise At("/strike_word", "strike_word cannot hold {tool}; the tool is named by change_word")
         return self
 
 
@@ -154,4 +155,4 @@ class Foot(Part):
 class Springback(Part):
     """How far a fold opens again when it is let go, as measured by the shop on a trial piece."""
 
-    opens_deg: Annotated[Angle, Field(ge=0, lt=45)]
+    opens_deg: Annotated[Angle, Within(ge=0, lt=45)]

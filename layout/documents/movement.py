@@ -9,13 +9,16 @@ from collections.abc import Mapping
 from itertools import pairwise
 from typing import Annotated, Any, Literal, Self
 
-from pydantic import Discriminator, Field, PrivateAttr, Tag, model_validator
+from pydantic import ConfigDict, Discriminator, Field, PrivateAttr, Tag, model_validator
 
+from layout.documents.conditions import STATED, beside, where
 from layout.documents.drive import Drive
+from layout.documents.feature import MOST_ROWS, Feature, check_features
 from layout.documents.pitch import key_of
 from layout.documents.reading import (
     FULL_TURN_DEG,
     Angle,
+    At,
     Identifier,
     Json,
     Length,
@@ -33,29 +36,10 @@ from layout.documents.reading import (
     read_json,
 )
 from layout.documents.tooth import Quality, Tooth, unstated
-from layout.errors import DocumentError
+from layout.errors import DocumentError, Problem
 
 MOST_TRACKS = 200  # tracks; far above any comb, keeps a document from being made slow
 MOST_TEETH = 400  # teeth; two combs of MOST_TRACKS
-MOST_FEATURES = 400  # holes of all feature rows; a drive row of a large disc has under 200
-MOST_ROWS = 32  # feature rows, and keep-out rings, and stages of a train; a disc has a few of each
-
-
-class Feature(Part):
-    """A row of equal holes, slots or rim notches that drive, stop or locate the disc."""
-
-    purpose: Literal["drive", "stop", "location"]
-    shape: Literal["hole", "slot", "notch"]
-    radius_mm: Length
-    first_at_deg: Angle = 0.0
-    count: Annotated[int, Field(ge=1, le=MOST_FEATURES)] = 1
-    width_mm: Length
-    length_mm: Length
-
-    @property
-    def angles_deg(self) -> tuple[float, ...]:
-        """Where the features of the row lie, evenly spread round the disc from first_at_deg."""
-        return tuple(self.first_at_deg + FULL_TURN_DEG * place / self.count for place in range(self.count))
 
 
 class DiscBlank(Part):
@@ -108,6 +92,15 @@ class MeasuredStarWheel(Part):
 class Projection(Part):
     """What turns a star wheel: standing metal, or a slot the point falls into."""
 
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                where("kind", "standing", {"depth_mm": STATED}),
+                where("kind", "slot", {"length_mm": STATED, "forming": {"const": "any"}}),
+            ]
+        }
+    )
+
     kind: Literal["standing", "slot"]
     width_mm: Length
     depth_mm: Length | None = None
@@ -118,17 +111,26 @@ class Projection(Part):
     @model_validator(mode="after")
     def _fields_of_its_kind(self) -> Self:
         if self.kind == "standing" and self.depth_mm is None:
-            raise ValueError("a standing projection needs depth_mm")
+            raise At("/depth_mm", "a standing projection needs depth_mm")
         if self.kind == "slot":
             if self.length_mm is None or self.length_mm < self.width_mm:
-                raise ValueError("a slot needs length_mm, along the travel, not below width_mm")
+                raise At("/length_mm", "a slot needs length_mm, along the travel, not below width_mm")
             if self.forming != "any":
-                raise ValueError("forming belongs to standing projections; leave it out for a slot")
+                raise At("/forming", "forming belongs to standing projections; leave it out for a slot")
         return self
 
 
 class Track(Part):
     """A circle on the disc served by one star wheel; track 1 is the innermost."""
+
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                beside("engagement_arc_mm", {"release_arc_mm": STATED}),
+                beside("release_arc_mm", {"engagement_arc_mm": STATED}),
+            ]
+        }
+    )
 
     track: Annotated[int, Field(ge=1)]
     radius_mm: Length
@@ -223,26 +225,32 @@ class Movement(Part):
     @model_validator(mode="after")
     def _turning_agrees(self) -> Self:
         if self.fastest_revolution_s > self.revolution_s:
-            raise ValueError(
+            raise At(
+                "/fastest_revolution_s",
                 f"fastest_revolution_s ({self.fastest_revolution_s:g}) is the shortest turn the movement makes; "
-                f"it cannot be above revolution_s ({self.revolution_s:g})"
+                f"it cannot be above revolution_s ({self.revolution_s:g})",
             )
         if self.before_music_deg + self.after_music_deg >= FULL_TURN_DEG:
-            raise ValueError("before_music_deg and after_music_deg leave no part of the turn for music")
+            raise At("/after_music_deg", "before_music_deg and after_music_deg leave no part of the turn for music")
         return self
 
     @model_validator(mode="after")
     def _tracks_agree(self) -> Self:
-        if [track.track for track in self.tracks] != list(range(1, len(self.tracks) + 1)):
-            raise ValueError("tracks must be numbered 1, 2, 3 … from the innermost")
+        for place, track in enumerate(self.tracks):
+            if track.track != place + 1:
+                raise At(f"/tracks/{place}/track", "tracks must be numbered 1, 2, 3 … from the innermost")
         radii = [track.radius_mm for track in self.tracks]
         for number, (inner, outer) in enumerate(pairwise(radii), start=1):
             if outer <= inner:
-                raise ValueError(f"track {number + 1} ({outer:g} mm) must lie outside track {number} ({inner:g} mm)")
+                raise At(
+                    f"/tracks/{number}/radius_mm",
+                    f"track {number + 1} ({outer:g} mm) must lie outside track {number} ({inner:g} mm)",
+                )
         if radii[0] <= abs(self.gantry_offset_mm):
-            raise ValueError(
+            raise At(
+                "/tracks/0/radius_mm",
                 f"track 1 ({radii[0]:g} mm) does not reach the row of star wheels "
-                f"(gantry_offset_mm {self.gantry_offset_mm:g})"
+                f"(gantry_offset_mm {self.gantry_offset_mm:g})",
             )
         return self
 
@@ -251,12 +259,12 @@ class Movement(Part):
         common = isinstance(self.star_wheel, StarWheel) or (
             self.star_wheel.engagement_arc_mm is not None and self.star_wheel.release_arc_mm is not None
         )
-        for track in self.tracks:
+        for place, track in enumerate(self.tracks):
             both = (track.engagement_arc_mm is None) == (track.release_arc_mm is None)
             if not both or (not common and track.engagement_arc_mm is None):
-                raise ValueError(f"track {track.track}: state both engagement_arc_mm and release_arc_mm")
+                raise At(f"/tracks/{place}", f"track {track.track}: state both engagement_arc_mm and release_arc_mm")
         if self.projection.kind == "slot" and isinstance(self.star_wheel, StarWheel):
-            raise ValueError("slots need measured arcs: give star_wheel engagement_arc_mm and release_arc_mm")
+            raise At("/star_wheel", "slots need measured arcs: give star_wheel engagement_arc_mm and release_arc_mm")
         return self
 
     @model_validator(mode="after")
@@ -264,9 +272,10 @@ class Movement(Part):
         for index, track in enumerate(self.tracks):
             _, release_mm = self.arcs_mm(index)
             if abs(self.gantry_offset_mm) + abs(release_mm) >= track.radius_mm:
-                raise ValueError(
+                raise At(
+                    f"/tracks/{index}/radius_mm",
                     f"track {track.track} ({track.radius_mm:g} mm) is too small for a release "
-                    f"{release_mm:g} mm past the row"
+                    f"{release_mm:g} mm past the row",
                 )
         return self
 
@@ -274,61 +283,32 @@ class Movement(Part):
     def _comb_agrees(self) -> Self:
         for number, count in Counter(tooth.tooth for tooth in self.teeth).items():
             if count > 1:
-                raise ValueError(f"tooth {number} is listed {count} times; number every tooth once")
+                last = max(place for place, tooth in enumerate(self.teeth) if tooth.tooth == number)
+                raise At(f"/teeth/{last}/tooth", f"tooth {number} is listed {count} times; number every tooth once")
         pitches: dict[int, int] = {}
-        for tooth in self.teeth:
+        for place, tooth in enumerate(self.teeth):
             if tooth.track > len(self.tracks):
-                raise ValueError(f"tooth {tooth.tooth}: there is no track {tooth.track}")
+                raise At(f"/teeth/{place}/track", f"tooth {tooth.tooth}: there is no track {tooth.track}")
             key = key_of(tooth.pitch)
             if pitches.setdefault(tooth.track, key) != key:
-                raise ValueError(f"tooth {tooth.tooth}: track {tooth.track} already has a tooth of another pitch")
+                raise At(
+                    f"/teeth/{place}/pitch",
+                    f"tooth {tooth.tooth}: track {tooth.track} already has a tooth of another pitch",
+                )
         return self
 
     @model_validator(mode="after")
     def _disc_agrees(self) -> Self:
         if self.disc.centre_hole_mm >= self.disc.outer_diameter_mm:
-            raise ValueError("centre_hole_mm must be below outer_diameter_mm")
-        for ring in self.keep_out:
+            raise At("/disc/centre_hole_mm", "centre_hole_mm must be below outer_diameter_mm")
+        for place, ring in enumerate(self.keep_out):
             if ring.to_radius_mm <= ring.from_radius_mm:
-                raise ValueError(f"keep-out {ring.why!r}: to_radius_mm must be above from_radius_mm")
-        if sum(feature.count for feature in self.disc.features) > MOST_FEATURES:
-            raise ValueError(f"the disc's features are more than {MOST_FEATURES} holes, slots and notches")
-        for feature in self.disc.features:
-            _check_feature(feature, self.disc)
-        _check_notches_stay_apart(self.disc.features)
+                raise At(
+                    f"/keep_out/{place}/to_radius_mm",
+                    f"keep-out {ring.why!r}: to_radius_mm must be above from_radius_mm",
+                )
+        check_features(self.disc.features, rim_mm=self.disc.outer_diameter_mm / 2, hole_mm=self.disc.centre_hole_mm / 2)
         return self
-
-
-def _check_feature(feature: Feature, disc: DiscBlank) -> None:
-    rim_mm = disc.outer_diameter_mm / 2
-    half_mm = feature.width_mm / 2
-    if feature.shape == "notch":
-        if not feature.radius_mm - half_mm < rim_mm < feature.radius_mm + half_mm:
-            raise ValueError(f"a notch must cross the rim at {rim_mm:g} mm; move its radius_mm or widen it")
-        if feature.radius_mm - half_mm <= disc.centre_hole_mm / 2:
-            raise ValueError(f"a notch at {feature.radius_mm:g} mm, {feature.width_mm:g} wide, reaches the centre hole")
-    elif feature.radius_mm + half_mm >= rim_mm or feature.radius_mm - half_mm <= disc.centre_hole_mm / 2:
-        raise ValueError(f"the {feature.purpose} {feature.shape} at {feature.radius_mm:g} mm leaves the disc")
-    if feature.shape == "hole" and feature.length_mm != feature.width_mm:
-        raise ValueError("a hole is round: give it the same width_mm and length_mm, or shape slot")
-    if feature.count * feature.length_mm >= 2 * math.pi * feature.radius_mm:
-        raise ValueError(f"{feature.count} of {feature.length_mm:g} mm do not fit round {feature.radius_mm:g} mm")
-
-
-def _check_notches_stay_apart(features: tuple[Feature, ...]) -> None:
-    """The rim is one simple outline only where no two notches meet; each lies in a sector of its own."""
-    sectors = []
-    for feature in features:
-        if feature.shape == "notch":
-            half_deg = math.degrees(math.atan2(feature.length_mm / 2, feature.radius_mm - feature.width_mm / 2))
-            step_deg = FULL_TURN_DEG / feature.count
-            sectors += [((feature.first_at_deg + n * step_deg) % FULL_TURN_DEG, half_deg) for n in range(feature.count)]
-    sectors.sort()
-    for place, (at_deg, half_deg) in enumerate(sectors):
-        next_deg, next_half_deg = sectors[(place + 1) % len(sectors)]
-        wrap_deg = FULL_TURN_DEG if place + 1 == len(sectors) else 0.0
-        if next_deg + wrap_deg - at_deg <= half_deg + next_half_deg:
-            raise ValueError(f"the notches at {at_deg:g} and {next_deg:g} degrees meet; make them one, or move one")
 
 
 def read_movement(text: str | bytes) -> Movement:
@@ -342,12 +322,25 @@ def read_movement(text: str | bytes) -> Movement:
         DocumentError: Not JSON, or not a valid movement; names every fault found.
     """
     plain, stated = read_json(text, document="movement")
-    if isinstance(plain, dict) and isinstance(plain.get("tracks"), dict):
+    is_spread = isinstance(plain, dict) and isinstance(plain.get("tracks"), dict)
+    if is_spread:
         plain = {**plain, "tracks": _listed_tracks(plain["tracks"])}
         stated |= _worth_of_listed(stated, len(plain["tracks"]))
-    movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)
+    try:
+        movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)
+    except DocumentError as error:
+        raise (_as_spread(error) if is_spread else error) from error
     movement._stated.update(stated)
     return movement
+
+
+def _as_spread(error: DocumentError) -> DocumentError:
+    """The error with its places as they are where tracks are spread: none of them stands by itself."""
+    problems = tuple(
+        Problem(pointer="/tracks" if p.pointer.startswith("/tracks/") else p.pointer, message=p.message)
+        for p in error.problems
+    )
+    return DocumentError(document=error.document, problems=problems)
 
 
 def _worth_of_listed(stated: Mapping[str, Stated], count: int) -> dict[str, Stated]:

@@ -6,6 +6,8 @@ _STEPS = {"C": 0, "D": 2, "E": 4, "F": 5, "G": 7, "A": 9, "B": 11}
 _ALTERS = {"": 0, "#": 1, "b": -1}
 _NAMES = ("C", "C#", "D", "Eb", "E", "F", "F#", "G", "G#", "A", "Bb", "B")
 _PATTERN = re.compile(r"([A-G])([#b]?)(-1|[0-9])")
+# The same as the code below, for JSON Schemas: C-1 to G9 by every name they have.
+PITCH_PATTERN = "^([A-G][#b]?[0-8]|[C-F][#b]?9|Gb?9|C#?-1|[ABD-G][#b]?-1)$"
 KEY_COUNT = 128  # keys, MIDI 1.0: seven data bits
 
 

@@ -10,9 +10,21 @@ import math
 import re
 from collections import Counter
 from collections.abc import Mapping
+from dataclasses import dataclass
 from typing import Annotated, Any, Literal, TypeVar
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationError, WithJsonSchema
+from pydantic import (
+    BaseModel,
+    BeforeValidator,
+    ConfigDict,
+    Field,
+    GetCoreSchemaHandler,
+    GetJsonSchemaHandler,
+    ValidationError,
+)
+from pydantic.json_schema import JsonSchemaValue
+from pydantic_core import CoreSchema
+from pydantic_core.core_schema import no_info_before_validator_function
 
 from layout.errors import DocumentError, Problem
 
@@ -20,6 +32,7 @@ MOST_LEVELS = 12  # lists and objects in each other; the deepest document has fi
 MOST_DIGITS = 400  # of a whole number: more than the greatest a double holds
 MOST_WHOLE = 2**53  # whole numbers below it are doubles, each its own (RFC 8259 section 6)
 MOST_SHOWN = 120  # characters of a value that a message shows: as many as the longest title has
+ID_PATTERN = "[a-z][a-z0-9-]{0,63}"
 _HALF_CHARACTER = re.compile("[\ud800-\udfff]")
 _TOO_DEEP = f"lists and objects are nested more than {MOST_LEVELS} deep; a document needs fewer"
 Json = Any  # what json.loads gives: the one place where the type is not known yet
@@ -37,6 +50,14 @@ class Stated(Part):
     value: float
     plus_minus: Annotated[float, Field(ge=0, le=1e9)] = 0.0
     basis: Literal["measured", "calculated", "assumed"] = "measured"
+
+
+class At(ValueError):
+    """What does not go together in a part: where in the part, as a JSON pointer, and what."""
+
+    def __init__(self, pointer: str, message: str) -> None:
+        super().__init__(message)
+        self.pointer = pointer
 
 
 _JSON_NAMES = {dict: "an object", list: "a list", str: "text", bool: "true or false", type(None): "null"}
@@ -62,29 +83,48 @@ def _number(value: object) -> object:
 
 
 def _identifier(value: object) -> object:
-    if not isinstance(value, str) or re.fullmatch("[a-z][a-z0-9-]{0,63}", value) is None:
+    if not isinstance(value, str) or re.fullmatch(ID_PATTERN, value) is None:
         raise ValueError(
             f"an id is a small letter followed by at most 63 small letters, digits and hyphens; got {_named(value)}"
         )
     return value
 
 
-_NUMBER_SCHEMA = {
-    "anyOf": [
-        {"type": "number"},
-        {
-            "type": "object",
-            "required": ["value"],
-            "additionalProperties": False,
-            "properties": {
-                "value": {"type": "number"},
-                "plus_minus": {"type": "number", "minimum": 0},
-                "basis": {"enum": ["measured", "calculated", "assumed"]},
-            },
-        },
-    ]
-}
-_TAKES_STATED = WithJsonSchema(_NUMBER_SCHEMA, mode="validation")
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Within:
+    """The range of a number that may be stated with its worth: what reading checks and what the JSON Schema says.
+
+    Written over a number that has a range already, each end it names takes the place of that end.
+    """
+
+    ge: float | None = None
+    gt: float | None = None
+    le: float | None = None
+    lt: float | None = None
+
+    def __get_pydantic_core_schema__(self, source: object, handler: GetCoreSchemaHandler) -> CoreSchema:
+        """A number within the range, whatever else was said of it."""
+        found: Any = handler(source)
+        ranged: Any = found["schema"] if found["type"] == "function-before" else found
+        for end in (("ge", "gt"), ("le", "lt")):
+            own = {name: value for name in end if (value := getattr(self, name)) is not None}
+            if own:
+                ranged = {**{name: part for name, part in ranged.items() if name not in end}, **own}
+        return no_info_before_validator_function(_number, ranged)
+
+    def __get_pydantic_json_schema__(self, schema: CoreSchema, handler: GetJsonSchemaHandler) -> JsonSchemaValue:
+        """The number as it stands, or with its worth; as programs tell it, it stands alone."""
+        number = handler(schema)
+        if handler.mode == "serialization" or "anyOf" in number:  # said already by the range this one is written over
+            return number
+        worth = {
+            name: {key: part for key, part in said.items() if key != "title"}
+            for name, said in Stated.model_json_schema()["properties"].items()
+        }
+        properties = {**worth, "value": number}
+        stated = {"type": "object", "required": ["value"], "additionalProperties": False, "properties": properties}
+        return {"anyOf": [number, stated]}
+
 
 # What a number of a document may be, by its quantity: far outside any real disc, and near enough that no sum
 # of them overflows and no drawing grows without end.
@@ -95,17 +135,16 @@ FULL_TURN_DEG = 360.0
 # Stiffness, inertia, torque, ratio in their own units; the least is the inertia of a gramme within a micrometre.
 LEAST_OF_OTHER, MOST_OF_OTHER = 1e-15, 1e9
 
-_IS_NUMBER = BeforeValidator(_number)
-Length = Annotated[float, _IS_NUMBER, Field(ge=LEAST_MM, le=MOST_MM), _TAKES_STATED]
-LengthOrZero = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_MM), _TAKES_STATED]
-Offset = Annotated[float, _IS_NUMBER, Field(ge=-MOST_MM, le=MOST_MM), _TAKES_STATED]
-Time = Annotated[float, _IS_NUMBER, Field(ge=LEAST_S, le=MOST_S), _TAKES_STATED]
-TimeOrZero = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_S), _TAKES_STATED]
-Angle = Annotated[float, _IS_NUMBER, Field(ge=-FULL_TURN_DEG, le=FULL_TURN_DEG), _TAKES_STATED]
-PositiveAngle = Annotated[float, _IS_NUMBER, Field(gt=0, le=FULL_TURN_DEG), _TAKES_STATED]
-Positive = Annotated[float, _IS_NUMBER, Field(ge=LEAST_OF_OTHER, le=MOST_OF_OTHER), _TAKES_STATED]
-NotNegative = Annotated[float, _IS_NUMBER, Field(ge=0, le=MOST_OF_OTHER), _TAKES_STATED]
-Identifier = Annotated[str, BeforeValidator(_identifier), Field(pattern=r"^[a-z][a-z0-9-]{0,63}$")]
+Length = Annotated[float, Within(ge=LEAST_MM, le=MOST_MM)]
+LengthOrZero = Annotated[float, Within(ge=0, le=MOST_MM)]
+Offset = Annotated[float, Within(ge=-MOST_MM, le=MOST_MM)]
+Time = Annotated[float, Within(ge=LEAST_S, le=MOST_S)]
+TimeOrZero = Annotated[float, Within(ge=0, le=MOST_S)]
+Angle = Annotated[float, Within(ge=-FULL_TURN_DEG, le=FULL_TURN_DEG)]
+PositiveAngle = Annotated[float, Within(gt=0, le=FULL_TURN_DEG)]
+Positive = Annotated[float, Within(ge=LEAST_OF_OTHER, le=MOST_OF_OTHER)]
+NotNegative = Annotated[float, Within(ge=0, le=MOST_OF_OTHER)]
+Identifier = Annotated[str, Field(pattern=f"^{ID_PATTERN}$"), BeforeValidator(_identifier)]
 Title = Annotated[str, Field(min_length=1, max_length=120)]
 
 DocumentT = TypeVar("DocumentT", bound=Part)
@@ -256,14 +295,19 @@ def check_document(
     try:
         return model.model_validate_json(json.dumps(_with_whole_numbers(value)), strict=True)
     except ValidationError as error:
-        problems = tuple(_problem(fault, union_tags) for fault in error.errors(include_url=False))
+        faults = error.errors(include_url=False)
+        # Items that are wrong are not counted, so that a list of them is told to be too short as well.
+        places = {fault["loc"][:end] for fault in faults for end in range(len(fault["loc"]))}
+        told = [fault for fault in faults if fault["type"] != "too_short" or fault["loc"] not in places]
+        problems = tuple(_problem(fault, union_tags) for fault in told)
         raise DocumentError(document=document, problems=problems) from error
 
 
 def _with_whole_numbers(value: Json) -> Json:
     """The value with 1 where it says 1.0: JSON Schema calls both an integer, and pydantic the first alone."""
-    if isinstance(value, float) and value and value.is_integer() and abs(value) < MOST_WHOLE:
-        return int(value)
+    if isinstance(value, float) and value.is_integer() and abs(value) < MOST_WHOLE:
+        is_minus_zero = value == 0 and math.copysign(1, value) < 0  # no whole number has a sign there
+        return value if is_minus_zero else int(value)
     if isinstance(value, Mapping):
         return {name: _with_whole_numbers(part) for name, part in value.items()}
     return [_with_whole_numbers(part) for part in value] if isinstance(value, list) else value
@@ -282,6 +326,8 @@ NEEDED = {
 
 def _problem(fault: Any, union_tags: frozenset[str]) -> Problem:
     place = "".join(f"/{_escaped(str(part))}" for part in fault["loc"] if part not in union_tags)
+    raised = fault.get("ctx", {}).get("error")
+    place += raised.pointer if isinstance(raised, At) else ""
     if fault["type"] == "extra_forbidden":
         return Problem(pointer=place, message="no such field; remove it or check its spelling")
     if fault["type"] == "missing":

@@ -2,9 +2,10 @@
 
 from typing import Annotated, Literal, Self
 
-from pydantic import Field, model_validator
+from pydantic import ConfigDict, Field, model_validator
 
-from layout.documents.reading import NotNegative, Time, check_document, read_json
+from layout.documents.conditions import only_where
+from layout.documents.reading import NotNegative, Time, Within, check_document, read_json
 from layout.documents.settings_part import IS_WHOLE, Channel, SettingsPart, Share
 from layout.documents.settings_passage import Passage, Speed
 from layout.documents.settings_writing import Writing
@@ -15,11 +16,13 @@ WIDEST_TRANSPOSITION = 48  # semitones; four octaves, more moves any tune off an
 MOST_NUDGE_MS = 50.0
 MOST_DISCS = 24  # discs; a box of them, and an hour of music at two and a half minutes a turn
 
-Nudge = Annotated[NotNegative, Field(le=MOST_NUDGE_MS)]
+Nudge = Annotated[NotNegative, Within(le=MOST_NUDGE_MS)]
 
 
 class Transpose(SettingsPart):
     """By how much the whole tune is transposed."""
+
+    model_config = ConfigDict(json_schema_extra={"allOf": [only_where("mode", "fixed", "semitones")]})
 
     mode: Literal["best", "fixed"] = "best"
     """best: what keeps the most weight within range; fixed: by semitones."""
@@ -64,6 +67,8 @@ class Channels(SettingsPart):
 class Ruling(SettingsPart):
     """What the maker decides by hand for one note."""
 
+    model_config = ConfigDict(json_schema_extra={"allOf": [only_where("do", "place", "track")]})
+
     note: Annotated[int, Field(ge=0), IS_WHOLE]
     """The note's index, from 0, as `notes` of layout.json counts them."""
 
@@ -105,7 +110,7 @@ class Settings(SettingsPart):
     """Which notes may be moved by an octave. outer: those that are the highest or the lowest at their onset.
     A ruling may move a note by octaves whatever stands here."""
 
-    octave_fit: Annotated[Share, Field(gt=0)] = 0.6
+    octave_fit: Annotated[Share, Within(gt=0)] = 0.6
     """The share of its weight (above 0, to 1) that a note keeps where it is moved by an octave."""
 
     largest_nudge_ms: Nudge = 20.0

@@ -5,7 +5,7 @@ from typing import Annotated
 
 from pydantic import BeforeValidator, ConfigDict, Field
 
-from layout.documents.reading import NotNegative, Part
+from layout.documents.reading import NotNegative, Part, Within
 
 
 class SettingsPart(Part):
@@ -24,4 +24,4 @@ def _whole(value: object) -> object:
 IS_WHOLE = BeforeValidator(_whole)
 
 Channel = Annotated[int, Field(ge=1, le=16), IS_WHOLE]
-Share = Annotated[NotNegative, Field(le=1)]  # of a weight
+Share = Annotated[NotNegative, Within(le=1)]  # of a weight

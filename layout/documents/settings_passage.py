@@ -2,18 +2,19 @@
 
 from typing import Annotated, Literal, Self
 
-from pydantic import Field, model_validator
+from pydantic import ConfigDict, Field, model_validator
 
-from layout.documents.reading import Positive, Time, TimeOrZero
+from layout.documents.conditions import only_where
+from layout.documents.reading import Positive, Time, TimeOrZero, Within
 from layout.documents.settings_part import IS_WHOLE, SettingsPart
 
 LEAST_FACTOR, MOST_FACTOR = 0.01, 100.0  # times as written; beyond, no tune is a tune
 MOST_BAR = 100_000  # bars; a tune may have that many beats, so no bar of a tune is past it
 MOST_BEAT = 256.0  # beats; the end of a bar of 255, the most a MIDI file can state
 
-Factor = Annotated[Positive, Field(ge=LEAST_FACTOR, le=MOST_FACTOR)]
+Factor = Annotated[Positive, Within(ge=LEAST_FACTOR, le=MOST_FACTOR)]
 Bar = Annotated[int, Field(ge=1, le=MOST_BAR), IS_WHOLE]
-Beat = Annotated[Positive, Field(ge=1, le=MOST_BEAT)]
+Beat = Annotated[Positive, Within(ge=1, le=MOST_BEAT)]
 
 
 class Passage(SettingsPart):
@@ -66,6 +67,8 @@ class Passage(SettingsPart):
 
 class Speed(SettingsPart):
     """How fast the disc plays the tune."""
+
+    model_config = ConfigDict(json_schema_extra={"allOf": [only_where("mode", "factor", "factor")]})
 
     mode: Literal["as-written", "fit", "factor", "best"] = "as-written"
     """as-written; fit: so that the tune fills the free part of the turn; factor: by the factor stated;

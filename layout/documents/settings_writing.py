@@ -4,7 +4,7 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
-from layout.documents.reading import Positive
+from layout.documents.reading import Positive, Within
 from layout.documents.settings_part import IS_WHOLE, SettingsPart, Share
 
 # Seconds between plucks of a note that is plucked again: below, a star wheel of a shipped movement hardly
@@ -15,7 +15,7 @@ LEAST_AGAIN_S, MOST_AGAIN_S = 0.1, 10.0
 class Writing(SettingsPart):
     """Music as makers write it. Every field is off by default."""
 
-    pluck_again_s: Annotated[Positive, Field(ge=LEAST_AGAIN_S, le=MOST_AGAIN_S)] | None = None
+    pluck_again_s: Annotated[Positive, Within(ge=LEAST_AGAIN_S, le=MOST_AGAIN_S)] | None = None
     """A note that lasts longer is plucked again every so many seconds (0.1 to 10) while it lasts, on
     alternate teeth where its pitch has several; null: every note is plucked once."""
 

@@ -3,10 +3,11 @@
 from dataclasses import dataclass
 from typing import Annotated, Literal, Self
 
-from pydantic import Field, field_validator, model_validator
+from pydantic import ConfigDict, Field, field_validator, model_validator
 from shapely import Polygon, is_valid_reason
 
-from layout.documents.cutter import Layer, check_layers, layer_of
+from layout.documents.conditions import LEFT_OUT, STATED, beside
+from layout.documents.cutter import Layer, Layers, check_layers, layer_of
 from layout.documents.reading import (
     LEAST_MM,
     Identifier,
@@ -14,6 +15,7 @@ from layout.documents.reading import (
     LengthOrZero,
     Part,
     Title,
+    Within,
     check_document,
     read_json,
 )
@@ -52,10 +54,12 @@ class SheetLimits:
 
 LIMITS = SheetLimits()
 
-SheetLength = Annotated[float, Field(ge=LEAST_MM, le=LIMITS.longest_mm)]
-SheetPlace = Annotated[float, Field(ge=-LIMITS.longest_mm, le=LIMITS.longest_mm)]
+SheetLength = Annotated[float, Within(ge=LEAST_MM, le=LIMITS.longest_mm)]
+SheetPlace = Annotated[float, Within(ge=-LIMITS.longest_mm, le=LIMITS.longest_mm)]
 Corner = tuple[SheetPlace, SheetPlace]
-Ring = Annotated[tuple[Corner, ...], Field(max_length=LIMITS.outline_corners)]
+Ring = Annotated[
+    tuple[Corner, ...], Field(max_length=LIMITS.outline_corners, json_schema_extra={"minItems": LEAST_CORNERS})
+]
 # Ends up in a CSV file: no sign a spreadsheet would take for a formula can stand first.
 Lot = Annotated[str, Field(pattern=r"^([A-Za-z0-9][A-Za-z0-9 ._/-]{0,39})?$")]
 Quantity = Annotated[int, Field(ge=1)]
@@ -76,6 +80,18 @@ class Stock(Part):
     `openings_mm` are holes that are in the sheet already. Rims keep `margin_mm` from edge and
     openings; the job's own margin holds where the stock has none.
     """
+
+    model_config = ConfigDict(
+        json_schema_extra={
+            "allOf": [
+                beside(
+                    "outline_mm",
+                    {"width_mm": LEFT_OUT, "height_mm": LEFT_OUT},
+                    otherwise={"width_mm": STATED, "height_mm": STATED},
+                )
+            ]
+        }
+    )
 
     id: Identifier
     lot: Lot = ""
@@ -145,7 +161,7 @@ class WantedDiscs(Part):
     """Discs of one diameter that are wanted."""
 
     id: Identifier
-    diameter_mm: Annotated[Length, Field(ge=LIMITS.least_disc_mm)]
+    diameter_mm: Annotated[Length, Within(ge=LIMITS.least_disc_mm)]
     quantity: Quantity
 
 
@@ -164,9 +180,9 @@ class SheetJob(Part):
     gap_mm: LengthOrZero
     margin_mm: LengthOrZero
     least_remnant_mm: Length = LEAST_REMNANT_MM
-    stock: Annotated[tuple[Stock, ...], Field(max_length=LIMITS.stock_kinds)]
-    discs: Annotated[tuple[WantedDiscs, ...], Field(max_length=LIMITS.disc_kinds)]
-    layers: dict[str, Layer] = Field(default_factory=dict)
+    stock: Annotated[tuple[Stock, ...], Field(max_length=LIMITS.stock_kinds, json_schema_extra={"minItems": 1})]
+    discs: Annotated[tuple[WantedDiscs, ...], Field(max_length=LIMITS.disc_kinds, json_schema_extra={"minItems": 1})]
+    layers: Layers = Field(default_factory=dict)
     labels: Annotated[bool, Field(strict=True)] = True
 
     @field_validator("stock")

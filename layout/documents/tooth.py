@@ -4,8 +4,8 @@ from typing import Annotated
 
 from pydantic import Field, field_validator
 
-from layout.documents.pitch import key_of
-from layout.documents.reading import Length, NotNegative, Offset, Part, Positive
+from layout.documents.pitch import PITCH_PATTERN, key_of
+from layout.documents.reading import Length, NotNegative, Offset, Part, Positive, Within
 
 MOST_CENTS = 1200.0  # cents; an octave, by which no comb is out of tune
 MOST_END_MASS = 100.0  # masses of the tooth itself; a bass tooth weighted with lead carries a few
@@ -17,8 +17,8 @@ def unstated(value: float | None) -> bool:
     return value is None
 
 
-EndMass = Annotated[NotNegative, Field(le=MOST_END_MASS)]
-Quality = Annotated[Positive, Field(ge=LEAST_QUALITY, le=MOST_QUALITY)]
+EndMass = Annotated[NotNegative, Within(le=MOST_END_MASS)]
+Quality = Annotated[Positive, Within(ge=LEAST_QUALITY, le=MOST_QUALITY)]
 
 
 class Tooth(Part):
@@ -30,8 +30,8 @@ class Tooth(Part):
 
     tooth: Annotated[int, Field(ge=1)]
     track: Annotated[int, Field(ge=1)]
-    pitch: str
-    cents: Annotated[Offset, Field(ge=-MOST_CENTS, le=MOST_CENTS)] = 0.0
+    pitch: Annotated[str, Field(json_schema_extra={"pattern": PITCH_PATTERN})]
+    cents: Annotated[Offset, Within(ge=-MOST_CENTS, le=MOST_CENTS)] = 0.0
     damped: bool = True
     usable: bool = True
     stiffness_n_per_mm: Length | None = None

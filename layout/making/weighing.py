@@ -5,7 +5,8 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from layout.documents.movement import DiscBlank, Feature
+from layout.documents.feature import Feature
+from layout.documents.movement import DiscBlank
 from layout.mechanics.blank import features_once
 from layout.mechanics.projection import Pattern, Shape
 from layout.place.disc import Disc

@@ -8,7 +8,8 @@ import shapely
 from shapely.geometry.base import BaseGeometry
 
 from layout.documents.cutter import SAME_PLACE_MM
-from layout.documents.movement import DiscBlank, Feature
+from layout.documents.feature import Feature
+from layout.documents.movement import DiscBlank
 from layout.mechanics.arrays import FloatArray
 
 

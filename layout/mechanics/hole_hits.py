@@ -12,7 +12,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.documents.cutter import Cutter, Tool
-from layout.documents.movement import DiscBlank, Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import DiscBlank, Movement
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.blank import feature_axes, features_once
 from layout.mechanics.hit_order import shortest_order

@@ -14,7 +14,7 @@ from typing import Literal
 import numpy as np
 import shapely
 
-from layout.documents.movement import Feature
+from layout.documents.feature import Feature
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm

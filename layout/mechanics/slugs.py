@@ -20,7 +20,8 @@ from typing import Literal
 import numpy as np
 
 from layout.documents.cutter import Cutter
-from layout.documents.movement import Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.mechanics.bridging import MOST_SHARE, gap_mm, gaps_in
 from layout.mechanics.obround import obround_mm

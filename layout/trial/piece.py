@@ -4,7 +4,7 @@ from dataclasses import dataclass, replace
 from typing import Literal
 
 from layout.cut.plan import Drawing, Points
-from layout.documents.movement import Feature
+from layout.documents.feature import Feature
 from layout.mechanics.arrays import FloatArray
 
 

@@ -8,7 +8,8 @@ import shapely
 from shapely.geometry.base import BaseGeometry
 
 from layout.cut.plan import Outlines
-from layout.documents.movement import Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import Movement
 from layout.mechanics.arrays import frozen_floats
 from layout.mechanics.blank import feature_core_mm
 

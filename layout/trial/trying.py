@@ -9,7 +9,8 @@ import shapely
 
 from layout.cut.plan import Drawing, Entity, LayerName, Lettering, Outlines, Points
 from layout.documents.cutter import Cutter
-from layout.documents.movement import Feature, Movement
+from layout.documents.feature import Feature
+from layout.documents.movement import Movement
 from layout.errors import DocumentError, Problem
 from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm

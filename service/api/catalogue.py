@@ -10,13 +10,14 @@ from urllib.parse import urlencode
 from flask import Blueprint, Request, Response, request
 
 from layout.documents import read_cutter, read_movement
-from layout.errors import NotShippedError
+from layout.errors import DocumentError, NotShippedError
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import document_response, json_bytes, json_response
 from service.api.asking import asker_or_none, needs, open_and_more_with
 from service.api.bodies import body_of
 from service.api.describing import describes
+from service.api.failures import places_told
 from service.api.models.documents import DocumentQuery, DocumentsQuery
 from service.api.operations import catalogue
 from service.api.problems import ProblemError
@@ -29,6 +30,7 @@ from service.store.documents import (
     SHIPPED_IDS,
     KeptDocument,
     KeptRevision,
+    check_text,
     document_in_force,
     documents_in_force,
     revisions_of,
@@ -89,6 +91,12 @@ def _add_routes(routes: Blueprint, kind: str, shelf: "_Shelf") -> None:
     def save(asker: Asker, document_id: str) -> Response:
         return shelf.save(asker, document_id, request)
 
+    @routes.post(f"/{kind}s/check", endpoint=f"check_{kind}")
+    @describes(catalogue.CHECK[kind])
+    @needs(Scope.MOVEMENTS)
+    def check(_: Asker) -> Response:
+        return shelf.check(request)
+
     @routes.delete(path, endpoint=f"withdraw_{kind}")
     @describes(catalogue.WITHDRAW[kind])
     @needs(Scope.MOVEMENTS)
@@ -101,7 +109,7 @@ class _Shelf:
 
     def __init__(self, parts: Parts, kind: str) -> None:
         self._store = parts.store
-        self._most_bytes = parts.settings.limits.document_bytes
+        self._limits = parts.settings.limits
         self._kind = kind
 
     def list_all(self, asker: Asker | None, asked: Request) -> Response:
@@ -140,6 +148,27 @@ class _Shelf:
     def save(self, asker: Asker, document_id: str, asked: Request) -> Response:
         as_expected = _expected(asked, may_be_new=True)
         writer = _writer(asker)
+        draft = Draft(kind=self._kind, id=document_id, text=self._text_of(asked))
+        try:
+            saved = save_document(self._store, writer, draft, as_expected)
+        except DocumentMovedError as fault:
+            raise ProblemError(name="document-changed", detail=str(fault)) from fault
+        return self._saved_response(saved)
+
+    def check(self, asked: Request) -> Response:
+        text = self._text_of(asked)
+        try:
+            check_text(self._kind, text)
+        except DocumentError as fault:
+            return json_response({"faults": places_told(fault, self._limits), "fault_count": len(fault.problems)})
+        return json_response({"faults": [], "fault_count": 0})
+
+    def _text_of(self, asked: Request) -> bytes:
+        """The document that a request brings.
+
+        Raises:
+            ProblemError: It is no JSON, or too large.
+        """
         if asked.mimetype != JSON_MEDIA_TYPE:
             raise ProblemError(
                 name="media-type-unsupported",
@@ -147,12 +176,7 @@ class _Shelf:
                 f"a {self._kind} is sent as {JSON_MEDIA_TYPE}",
                 more={"allowed_types": [JSON_MEDIA_TYPE]},
             )
-        draft = Draft(kind=self._kind, id=document_id, text=body_of(asked, self._most_bytes))
-        try:
-            saved = save_document(self._store, writer, draft, as_expected)
-        except DocumentMovedError as fault:
-            raise ProblemError(name="document-changed", detail=str(fault)) from fault
-        return self._saved_response(saved)
+        return body_of(asked, self._limits.document_bytes)
 
     def withdraw(self, asker: Asker, document_id: str, asked: Request) -> Response:
         as_expected = _expected(asked, may_be_new=False)

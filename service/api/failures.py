@@ -97,16 +97,19 @@ def problem_of(error: LayoutError, limits: Limits) -> ProblemError:
 
 
 def _problem_of_document(name: str, error: DocumentError, limits: Limits) -> ProblemError:
-    most = limits.shown_characters
-    shown = error.problems[: limits.shown_problems]
     more: dict[str, Any] = {
         "document": error.document,
-        "invalid_params": [
-            {"pointer": shortened(p.pointer, most), "detail": shortened(p.message, most)} for p in shown
-        ],
+        "invalid_params": places_told(error, limits),
         "problem_count": len(error.problems),
     }
-    return ProblemError(name=name, detail=told_in_short(error, most), more=more)
+    return ProblemError(name=name, detail=told_in_short(error, limits.shown_characters), more=more)
+
+
+def places_told(error: DocumentError, limits: Limits) -> list[dict[str, str]]:
+    """The faults of a document as answers tell them: the place of each and what it is, the first so many."""
+    most = limits.shown_characters
+    shown = error.problems[: limits.shown_problems]
+    return [{"pointer": shortened(p.pointer, most), "detail": shortened(p.message, most)} for p in shown]
 
 
 def _problem_of_refusal(refusal: HTTPException, limits: Limits) -> ProblemError:

@@ -4,8 +4,9 @@ from collections.abc import Iterator
 
 from layout.cut.plan import CutPlan
 from layout.documents.cutter import Cutter
+from layout.documents.feature import Feature
 from layout.documents.making import ToleranceClass
-from layout.documents.movement import DiscBlank, Feature
+from layout.documents.movement import DiscBlank
 from layout.place.disc import Disc
 from layout.write.work_sheet.paper import Area, Paper, headed
 from layout.write.work_sheet.rows import Row, rows_written

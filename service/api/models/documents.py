@@ -67,6 +67,20 @@ class SavedAnswer(Part):
     links: dict[str, str]
 
 
+class FaultAnswer(Part):
+    """A fault of a document."""
+
+    pointer: str = Field(description='the place, as a JSON pointer; "" for the whole document')
+    detail: str = Field(description="what is wrong there")
+
+
+class CheckAnswer(Part):
+    """What is wrong with a document; nothing where it could be saved."""
+
+    faults: list[FaultAnswer] = Field(description="the first of them")
+    fault_count: int = Field(description="how many there are; rules between fields are looked at last")
+
+
 class RevisionAnswer(Part):
     """A revision of a document."""
 

@@ -9,7 +9,7 @@ from pydantic import BaseModel
 
 from layout.documents import Cutter, Movement, shipped_text
 from service.api.describing import Answer, Body, Example, HeaderField, Operation
-from service.api.models.documents import DocumentQuery, DocumentsQuery, RevisionsAnswer, SavedAnswer
+from service.api.models.documents import CheckAnswer, DocumentQuery, DocumentsQuery, RevisionsAnswer, SavedAnswer
 from service.api.models.shipped import CuttersAnswer, MovementsAnswer
 from service.api.operations.common import (
     CSRF_TOKEN,
@@ -107,6 +107,22 @@ def _save(kind: str) -> Operation:
     )
 
 
+def _check(kind: str) -> Operation:
+    def document() -> dict[str, Any]:
+        return {**json.loads(shipped_text(SHIPPED[kind])), "id": "Own"}
+
+    return Operation(
+        id=f"check_{kind}",
+        tag=TAG,
+        summary=f"Check a {kind} and keep nothing",
+        description="Read as one that is saved is read, with every rule that its schema cannot say.",
+        headers=(CSRF_TOKEN,),
+        bodies=(Body(media_type=JSON_MEDIA_TYPE, model=MODELS[kind]),),
+        answers=(told(CheckAnswer, "What is wrong with it."),),
+        examples=(Example(status=200, media_type=JSON_MEDIA_TYPE, body=document),),
+    )
+
+
 def _withdraw(kind: str) -> Operation:
     return Operation(
         id=f"withdraw_{kind}",
@@ -124,4 +140,5 @@ LIST = MappingProxyType({kind: _list(kind) for kind in MODELS})
 TELL = MappingProxyType({kind: _tell(kind) for kind in MODELS})
 REVISIONS = MappingProxyType({kind: _revisions(kind) for kind in MODELS})
 SAVE = MappingProxyType({kind: _save(kind) for kind in MODELS})
+CHECK = MappingProxyType({kind: _check(kind) for kind in MODELS})
 WITHDRAW = MappingProxyType({kind: _withdraw(kind) for kind in MODELS})

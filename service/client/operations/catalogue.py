@@ -34,6 +34,11 @@ class OfCatalogue(Group):
         path = place("/v1/cutters/{document_id}/revisions", {"document_id": document_id})
         return cast("shapes.RevisionsAnswer", self._caller.json("GET", path))
 
+    def check_cutter(self, body: dict[str, Any]) -> shapes.CheckAnswer:
+        """Check a cutter and keep nothing."""
+        path = "/v1/cutters/check"
+        return cast("shapes.CheckAnswer", self._caller.json("POST", path, body=body))
+
     def list_movements(self, query: Query | None = None) -> shapes.MovementsAnswer:
         """The movements there are."""
         path = "/v1/movements"
@@ -58,3 +63,8 @@ class OfCatalogue(Group):
         """The revisions of a movement."""
         path = place("/v1/movements/{document_id}/revisions", {"document_id": document_id})
         return cast("shapes.RevisionsAnswer", self._caller.json("GET", path))
+
+    def check_movement(self, body: dict[str, Any]) -> shapes.CheckAnswer:
+        """Check a movement and keep nothing."""
+        path = "/v1/movements/check"
+        return cast("shapes.CheckAnswer", self._caller.json("POST", path, body=body))

@@ -8,8 +8,10 @@ from service.client.shapes.about import LimitsAnswer as LimitsAnswer
 from service.client.shapes.about import ProblemKindAnswer as ProblemKindAnswer
 from service.client.shapes.about import ProblemKindsAnswer as ProblemKindsAnswer
 from service.client.shapes.about import SchemasAnswer as SchemasAnswer
+from service.client.shapes.catalogue import CheckAnswer as CheckAnswer
 from service.client.shapes.catalogue import CutterLine as CutterLine
 from service.client.shapes.catalogue import CuttersAnswer as CuttersAnswer
+from service.client.shapes.catalogue import FaultAnswer as FaultAnswer
 from service.client.shapes.catalogue import MovementLine as MovementLine
 from service.client.shapes.catalogue import MovementsAnswer as MovementsAnswer
 from service.client.shapes.catalogue import RevisionAnswer as RevisionAnswer

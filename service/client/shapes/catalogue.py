@@ -3,6 +3,13 @@
 from typing import TypedDict
 
 
+class CheckAnswer(TypedDict):
+    """What is wrong with a document; nothing where it could be saved."""
+
+    faults: list["FaultAnswer"]
+    fault_count: int
+
+
 class CutterLine(TypedDict):
     """A cutter, in short."""
 
@@ -21,6 +28,13 @@ class CuttersAnswer(TypedDict):
     """The cutters there are."""
 
     cutters: list["CutterLine"]
+
+
+class FaultAnswer(TypedDict):
+    """A fault of a document."""
+
+    pointer: str
+    detail: str
 
 
 class MovementLine(TypedDict):

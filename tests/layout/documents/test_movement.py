@@ -65,7 +65,7 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
         ({"format": "discwright-movement/2"}, r"/format: Input should be 'discwright-movement/1'"),
         (
             {"drive": {"winding": {"spring": OVERDRAWN, "barrel_to_disc": [4]}}},
-            "/drive/winding/spring: usable_turns cannot be above wound_turns",
+            "/drive/winding/spring/usable_turns: usable_turns cannot be above wound_turns",
         ),
         ({"id": "Fern Hollow"}, r"/id: an id is a small letter followed by .*; got 'Fern Hollow'"),
         ({"revolution_s": None, "disc": []}, r"/disc: "),

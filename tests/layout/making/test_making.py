@@ -16,7 +16,7 @@ from shapely.geometry.base import BaseGeometry
 from layout.cut import plan_cuts
 from layout.cut.plan import CutPath, CutPlan
 from layout.documents import Cutter, Movement
-from layout.documents.movement import Feature
+from layout.documents.feature import Feature
 from layout.making import Making, making_of
 from layout.making.making import TimeParts
 from layout.making.weighing import area_mm2, lost_mm2
