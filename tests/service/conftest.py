@@ -2,6 +2,11 @@
 
 Whatever asks for `database_url`, by itself or by `parts`, is run on each of DATABASES, and its queue is on the same
 one: nothing names another. Tests of what one database alone has say so with `sqlite_alone`, and why.
+
+A test in a folder of ABOVE_THE_STORE that goes through a table of cases goes through all of them on SQLite, and on
+PostgreSQL through the first: what it holds of each case is decided before the store is asked or after. Where a case is
+about what a database can hold or be asked, the test says so with `each_case_on_both`. TESTS=thorough runs every case on
+both.
 """
 
 import atexit
@@ -24,8 +29,10 @@ from service.settings import settings_from
 from service.store.migrating import migrate
 from service.store.store import Store
 from service.store.tables import Counter
+from tests.thorough import THOROUGH
 
 DATABASES = ("sqlite", "postgresql")
+ABOVE_THE_STORE = tuple(Path(__file__).parent / folder for folder in ("api", "background", "commands", "hooks"))
 _numbers = itertools.count(1)
 
 
@@ -138,6 +145,37 @@ def sqlite_alone(because: str) -> pytest.MarkDecorator:
     """
     assert because
     return pytest.mark.parametrize("database_url", ["sqlite"], indirect=True)
+
+
+def each_case_on_both(because: str) -> pytest.MarkDecorator:
+    """Marks a test whose every case is run on both databases, though it stands above the store.
+
+    Args:
+        because: What about its cases the databases may see otherwise.
+    """
+    return pytest.mark.each_case_on_both(because)
+
+
+def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
+    """Leave further cases to SQLite."""
+    if THOROUGH:
+        return
+    left = [item for item in items if _is_a_further_case_on_postgresql(item)]
+    if left:
+        config.hook.pytest_deselected(items=left)
+        leaving = set(left)
+        items[:] = [item for item in items if item not in leaving]
+
+
+def _is_a_further_case_on_postgresql(item: pytest.Item) -> bool:
+    case = getattr(item, "callspec", None)
+    if case is None or case.params.get("database_url") != "postgresql":
+        return False
+    if not any(item.path.is_relative_to(folder) for folder in ABOVE_THE_STORE):
+        return False
+    if item.get_closest_marker("each_case_on_both") is not None:
+        return False
+    return any(place > 0 for name, place in case.indices.items() if name != "database_url")
 
 
 @pytest.fixture

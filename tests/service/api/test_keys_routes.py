@@ -8,6 +8,7 @@ from flask.testing import FlaskClient
 from service.access.scopes import Scope
 from service.parts import Parts
 from tests.service.api.guarded import bearing, guarded_app, new_key, problem_of, signed_in
+from tests.service.conftest import each_case_on_both
 
 SAME = {"Request-Id": "the-same"}  # so that two answers may be alike to the byte
 NEVER_MADE = "key_" + 32 * "0"
@@ -84,6 +85,7 @@ def test_another_owner_s_key_is_as_one_that_never_was(any_parts: Parts, http: Fl
         assert fields[0] == fields[1]
 
 
+@each_case_on_both("what text it can be asked for")
 @pytest.mark.parametrize("strange", ["me2", "%00", "%FF", "key_1", "x" * 2000, NEVER_MADE.upper(), "..%2f"])
 def test_what_is_no_id_is_no_key(any_parts: Parts, http: FlaskClient, strange: str) -> None:
     answer = http.delete(f"/v1/keys/{strange}", headers=bearing(new_key(any_parts, Scope.ADMIN)))
@@ -118,6 +120,7 @@ def test_keys_are_listed_in_pages(any_parts: Parts, http: FlaskClient) -> None:
     assert [len(page) for page in seen] == [2, 2, 1]
 
 
+@each_case_on_both("what it can be asked")
 @pytest.mark.parametrize(
     ("query", "detail"),
     [

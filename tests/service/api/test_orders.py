@@ -24,6 +24,7 @@ from service.parts import Parts
 from service.settings import AccessSettings
 from service.store.holds import FileKeeper
 from tests.service.api.guarded import bearing, new_key, problem_of
+from tests.service.conftest import each_case_on_both
 from tests.service.fakes import MANY
 from tests.service.shop import TUNE, planned
 
@@ -474,6 +475,7 @@ def test_a_client_that_has_the_newest_is_told_so_after_its_wait(shop: Shop) -> N
     assert answer.status_code == 304
 
 
+@each_case_on_both("what text it can be asked for")
 @pytest.mark.parametrize("id_in_path", ["%00", "order_%00", "a%00b"])
 @pytest.mark.parametrize(
     "place", ["orders/{}", "orders/{}/events", "orders/{}/plans/1/files/1/disc.svg", "runs/{}", "quotes/{}", "hooks/{}"]
@@ -484,6 +486,7 @@ def test_an_id_with_a_nul_leads_nowhere(shop: Shop, place: str, id_in_path: str)
     problem_of(answer, "route-unknown")
 
 
+@each_case_on_both("its largest numbers")
 @pytest.mark.parametrize("revision", [2**31 - 1, 2**31, 2**63, 10**30])
 def test_a_file_of_a_plan_that_no_table_can_number_is_unknown(shop: Shop, revision: int) -> None:
     order_id = shop.ready()
@@ -493,6 +496,7 @@ def test_a_file_of_a_plan_that_no_table_can_number_is_unknown(shop: Shop, revisi
     problem_of(answer, "route-unknown")
 
 
+@each_case_on_both("what it can be asked")
 @pytest.mark.parametrize(
     ("asked", "parameter"),
     [
@@ -510,6 +514,7 @@ def test_a_question_that_no_table_can_be_asked_is_refused(shop: Shop, asked: str
     assert told["parameter"] == parameter
 
 
+@each_case_on_both("what it can hold")
 @pytest.mark.parametrize(
     ("said", "pointer"),
     [

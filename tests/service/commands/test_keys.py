@@ -12,6 +12,7 @@ from service.access.scopes import Scope
 from service.commands import keys
 from service.parts import Parts
 from tests.service.commands.conftest import Discwright
+from tests.service.conftest import each_case_on_both
 
 SECRET = re.compile(r"dw_[A-Za-z0-9_-]{43}")
 NEVER_MADE = "key_" + 32 * "0"
@@ -110,6 +111,7 @@ def test_a_revoked_key_opens_nothing(run: Any, any_parts: Parts) -> None:
     assert find_key(any_parts.store, made["secret"]) is None
 
 
+@each_case_on_both("what text it can be asked for")
 @pytest.mark.parametrize("key", [NEVER_MADE, "", "web shop", "\x00"])
 def test_a_key_that_never_was_is_a_clear_error(run: Any, key: str) -> None:
     code, out, err = run("revoke", key)
