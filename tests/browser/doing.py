@@ -29,7 +29,8 @@ UNFOLD = """() => {
 }"""
 # What reaches past the right edge, where nothing that holds it scrolls by itself.
 WIDEST = """() => {
-  const held = (one) => one.matches("body") ? false : getComputedStyle(one).overflowX !== "visible" || held(one.parentElement);
+  const scrolls = (one) => getComputedStyle(one).overflowX !== "visible";
+  const held = (one) => !one.matches("body") && (scrolls(one) || held(one.parentElement));
   return [...document.querySelectorAll("body *")]
     .filter((one) => one.getBoundingClientRect().right > document.documentElement.clientWidth + 0.5)
     .filter((one) => !held(one.parentElement)).slice(0, 5).map((one) => one.outerHTML.slice(0, 120));
