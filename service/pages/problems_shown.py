@@ -9,6 +9,7 @@ from service.api.problems import PROBLEM_MEDIA_TYPE
 from service.pages.rendering import page
 
 API = "/v1/"
+SIGN_IN = "/sign-in"
 UNAUTHORIZED = 401
 
 
@@ -19,11 +20,12 @@ def show_problems(app: Flask) -> None:
     def show(response: Response) -> Response:
         if response.mimetype != PROBLEM_MEDIA_TYPE or request.path.startswith(API):
             return response
-        if request.method != "GET" or not prefers_html(request):
+        is_form = request.method == "POST" and request.path == SIGN_IN  # the one form that a browser sends by itself
+        if not (request.method == "GET" or is_form) or not prefers_html(request):
             response.vary.add("Accept")
             return response
         problem = json.loads(response.get_data())
-        template = "sign_in.html" if response.status_code == UNAUTHORIZED else "problem.html"
+        template = "sign_in.html" if is_form or response.status_code == UNAUTHORIZED else "problem.html"
         query = request.query_string.decode("latin-1")
         shown = page(
             request,

@@ -21,6 +21,7 @@ ARGUMENTS = (
 )
 WITHIN_MS = 30_000.0
 SIZES = {"wide": (1280, 900), "phone": (360, 740)}
+SHORTEST_PX = 320  # of CSS; WCAG 2.2, 1.4.10: at this width nothing scrolls sideways
 SCHEMES: tuple[Literal["light", "dark"], ...] = ("light", "dark")
 
 
