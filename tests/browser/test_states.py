@@ -85,7 +85,7 @@ def sign_in_refused(window: Window) -> Page:
 def movement_form_with_faults(window: Window) -> Page:
     page = window.open("/movements/tarnlight-17/edit", "form[data-ready]")
     unfold(page)
-    page.fill("[id='at/disc/outer_diameter_mm']", "-5")
+    page.fill("[id='at/tracks/count']", "0")
     page.wait_for_selector("#form [aria-invalid=true]")
     return page
 
