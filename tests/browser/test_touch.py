@@ -11,6 +11,18 @@ from tests.browser.doing import turned_deg
 
 READY = "#rulings[data-ready]"
 STEPS = 8  # of a movement; a finger is seen some 60 times a second
+# A place near projections where none lies: a finger is wider than what it is meant for.
+BESIDE = """() => {
+  for (const one of document.querySelectorAll("#stage .projection")) {
+    const box = one.getBoundingClientRect();
+    for (const [right, down] of [[9, 0], [-9, 0], [0, 9], [0, -9]]) {
+      const place = [box.x + box.width / 2 + right, box.y + box.height / 2 + down];
+      const there = document.elementFromPoint(...place);
+      if (there?.closest("#stage .disc") && !there.closest(".projection, .left-out")) return place;
+    }
+  }
+  return null;
+}"""
 Places = Sequence[tuple[float, float]]
 
 
@@ -101,13 +113,13 @@ def test_one_finger_scrolls_the_page_over_a_whole_disc_and_moves_one_that_is_nea
     assert page.get_attribute("#pointed", "data-thing") is None  # what moved the drawing chooses nothing
 
 
-def test_a_tap_near_a_projection_chooses_it_and_its_rulings_are_offered(page: Page) -> None:
-    box = page.locator("#stage .projection").nth(200).bounding_box()
-    assert box is not None
+def test_a_tap_beside_a_projection_chooses_it_and_its_rulings_are_offered(page: Page) -> None:
+    beside = page.evaluate(BESIDE)
+    assert beside is not None
 
-    page.touchscreen.tap(box["x"] + box["width"] / 2 + 8, box["y"] + box["height"] / 2)
+    page.touchscreen.tap(*beside)
 
     assert page.locator("#stage .projection.chosen, #stage .left-out.chosen").count() == 1
     assert str(page.get_attribute("#pointed", "data-thing")).split(" ")[0] in ("projection", "left_out")
     assert page.locator("#ruling-choices button").count() > 0
-    assert page.inner_text("#brief") != ""
+    assert " at " in page.inner_text("#brief")
