@@ -10,6 +10,7 @@ from service.api.proofs import PAGE as PROOFS
 from service.pages.rendering import page
 
 API = "/v1/"
+SIGN_IN = "/sign-in"
 UNAUTHORIZED = 401
 
 
@@ -20,11 +21,12 @@ def show_problems(app: Flask) -> None:
     def show(response: Response) -> Response:
         if response.mimetype != PROBLEM_MEDIA_TYPE or request.path.startswith(API):
             return response
-        if request.method != "GET" or not prefers_html(request):
+        is_form = request.method == "POST" and request.path == SIGN_IN  # the one form that a browser sends by itself
+        if not (request.method == "GET" or is_form) or not prefers_html(request):
             response.vary.add("Accept")
             return response
         problem = json.loads(response.get_data())
-        template = _template_for(request.path, response.status_code)
+        template = "sign_in.html" if is_form else _template_for(request.path, response.status_code)
         query = request.query_string.decode("latin-1")
         shown = page(
             request,

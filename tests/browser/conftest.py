@@ -21,6 +21,7 @@ ARGUMENTS = (
 )
 WITHIN_MS = 30_000.0
 SIZES = {"wide": (1280, 900), "phone": (360, 740)}
+SHORTEST_PX = 320  # of CSS; WCAG 2.2, 1.4.10: at this width nothing scrolls sideways
 SCHEMES: tuple[Literal["light", "dark"], ...] = ("light", "dark")
 
 
@@ -101,12 +102,14 @@ def open_window(browser: Browser, service: Served) -> Iterator[Callable[..., Win
     """Makes windows of a size and scheme; at the end nothing may have gone wrong in any of them."""
     made: list[Window] = []
 
-    def window(*, size: str = "wide", scheme: str = "light", signed_in: bool = False) -> Window:
+    def window(*, size: str = "wide", scheme: str = "light", signed_in: bool = False, touch: bool = False) -> Window:
         width, height = SIZES[size]
         context = browser.new_context(
             viewport={"width": width, "height": height},
             color_scheme="dark" if scheme == "dark" else "light",
             reduced_motion="reduce",
+            has_touch=touch,
+            is_mobile=touch,
         )
         watch = Watch()
         context.set_default_timeout(WITHIN_MS)

@@ -8,12 +8,10 @@ import pytest
 from service.app import create_app
 from service.pages.page_views import is_page
 from tests.browser.access import ASK_AXE, ASK_CONTRAST, AXE, MOST_ALIKE, RULES, told
-from tests.browser.conftest import SCHEMES, SIZES, Window
+from tests.browser.conftest import SCHEMES, SHORTEST_PX, SIZES, Window
 from tests.browser.doing import take_picture, unfold, widest
 from tests.browser.pages_list import NO_PAGES, PAGES, ShownPage
 from tests.service.conftest import parts_of
-
-SHORTEST_PX = 320  # of CSS; WCAG 2.2, 1.4.10: at this width nothing scrolls sideways
 
 every_page = pytest.mark.parametrize("shown", PAGES, ids=lambda page: page.name)
 

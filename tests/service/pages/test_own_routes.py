@@ -88,6 +88,17 @@ def test_a_problem_is_told_to_a_person_as_a_page_and_to_a_program_as_before(clie
     assert of_the_api.mimetype == "application/problem+json"
 
 
+def test_a_key_that_is_refused_is_told_to_a_person_at_its_field_and_to_a_program_as_before(client: FlaskClient) -> None:
+    shown = client.post("/sign-in", data={"key": "dw_<b>"}, headers=HTML)
+    told = client.post("/sign-in", data={"key": "dw_<b>"})
+
+    assert (shown.status_code, shown.mimetype) == (403, "text/html")
+    assert 'id="key-fault">No key that is in force was given.' in shown.text
+    assert "dw_&lt;" not in shown.text  # no key goes back out
+    assert (told.status_code, told.mimetype) == (403, "application/problem+json")
+    assert client.post("/v1/orders", headers=HTML).mimetype == "application/problem+json"
+
+
 def test_a_text_fills_in_what_it_names() -> None:
     assert text_of("base.signed_in_as", title="shop") == "Signed in: shop"
     with pytest.raises(KeyError):

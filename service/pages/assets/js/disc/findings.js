@@ -93,6 +93,9 @@ const whole = (radius_mm) => ({
   points: [0, 90, 180, 270].map((deg) => onDrawing(radius_mm, deg)),
 });
 
+// A line, and round it what a hand can hit.
+const line = (d) => [svg("path", { d }), svg("path", { class: "reach", d })];
+
 const mark = (place, state, ...children) =>
   svg(
     "g",
@@ -110,11 +113,11 @@ function discMarks(place, state) {
   const places = placesOf(state.layout.findings[place], state);
   if (!places.length) return [];
   const shapes = places.map((one) => {
-    if (one.kind === "circle") return svg("path", { d: circlePath(one.radius_mm) });
-    if (one.kind === "moment") return svg("path", { d: `M${one.points.map(([x, y]) => `${fine(x)} ${fine(y)}`).join("L")}` });
+    if (one.kind === "circle") return line(circlePath(one.radius_mm));
+    if (one.kind === "moment") return line(`M${one.points.map(([x, y]) => `${fine(x)} ${fine(y)}`).join("L")}`);
     return svg("circle", { class: "at", cx: fine(one.points[0][0]), cy: fine(one.points[0][1]), r: 1 });
   });
-  return [mark(place, state, ...shapes)];
+  return [mark(place, state, ...shapes.flat())];
 }
 
 function chartMarks(place, state, chart) {
@@ -122,9 +125,9 @@ function chartMarks(place, state, chart) {
     const x = one.turned_deg === null ? null : fine(one.turned_deg * chart.pxPerDeg);
     if (one.kind === "circle") {
       const y = chart.yOf(one.radius_mm);
-      return y < chart.top || y > chart.top + chart.high ? [] : [svg("path", { d: `M0 ${fine(y)}H${fine(360 * chart.pxPerDeg)}` })];
+      return y < chart.top || y > chart.top + chart.high ? [] : line(`M0 ${fine(y)}H${fine(360 * chart.pxPerDeg)}`);
     }
-    if (one.kind === "moment") return [svg("path", { d: `M${x} ${chart.top}v${chart.high}` })];
+    if (one.kind === "moment") return line(`M${x} ${chart.top}v${chart.high}`);
     const y = Math.min(chart.top + chart.high, Math.max(chart.top, chart.yOf(one.radius_mm)));
     return [svg("circle", { cx: x, cy: fine(y), r: 7 })];
   });
