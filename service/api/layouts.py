@@ -3,7 +3,7 @@
 import hashlib
 import json
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from typing import Any
 from urllib.parse import urlencode
@@ -103,7 +103,7 @@ def _add_settings(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTeller", l
     @describes(layouts.SETTINGS)
     @open_on_loopback(Scope.ORDER)
     def give_settings(fingerprint: str) -> Response:
-        kept = _found(desk, fingerprint)
+        kept = _found_any(desk, fingerprint)
         response = Response(kept.inputs.settings, content_type=JSON_MEDIA_TYPE)
         named = _named(kept, not_good=False)
         response.headers["Content-Disposition"] = content_disposition(named, SETTINGS, how="attachment")
@@ -117,7 +117,7 @@ def _add_settings(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTeller", l
     @open_on_loopback(Scope.ORDER)
     def make_again(fingerprint: str) -> Response:
         reason = read_arguments(request, DespiteQuery).despite_findings
-        kept = _found(desk, fingerprint)
+        kept = _found_any(desk, fingerprint)
         asked = read_body(request, Settings, document="settings", most_bytes=limits.document_bytes)
         inputs = replace(kept.inputs, settings=asked.model_dump_json(exclude_unset=True).encode())
         return teller.made(desk.lay_out_discs(inputs, _owner_id()), None, reason)
@@ -285,7 +285,16 @@ def _owner_id() -> str | None:
 
 
 def _found(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
-    kept = desk.find(fingerprint, _owner_id()) if FINGERPRINT.fullmatch(fingerprint) else None
+    return _known(fingerprint, lambda: desk.find(fingerprint, _owner_id()))
+
+
+def _found_any(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
+    """The same, also of an earlier version of the program: what it was made from is there, and its files are not."""
+    return _known(fingerprint, lambda: desk.find_any(fingerprint, _owner_id())[0])
+
+
+def _known(fingerprint: str, find: Callable[[], KeptLayout | None]) -> KeptLayout:
+    kept = find() if FINGERPRINT.fullmatch(fingerprint) else None
     if kept is None:
         raise ProblemError(
             name="layout-unknown",

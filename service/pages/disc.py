@@ -4,7 +4,7 @@ import json
 import re
 from collections.abc import Mapping
 from types import MappingProxyType
-from typing import Any
+from typing import Any, Literal
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
@@ -26,6 +26,12 @@ from service.pages.rendering import page
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
 
 
+class DiscQuery(DespiteQuery):
+    """How a disc is looked at; and whether one that an earlier version laid out shall be laid out anew."""
+
+    lay_out_again: Literal["yes"] | None = None
+
+
 def disc_routes(desk: LayoutDesk) -> Blueprint:
     """The page of a layout.
 
@@ -38,17 +44,20 @@ def disc_routes(desk: LayoutDesk) -> Blueprint:
     @gives_page
     @open_on_loopback(Scope.ORDER)
     def show_disc(fingerprint: str) -> Response:
-        reason = read_arguments(request, DespiteQuery).despite_findings
+        query = read_arguments(request, DiscQuery)
         asker = asker_or_none()
         owner_id = None if asker is None else asker.owner_id
-        kept = desk.find(fingerprint, owner_id) if FINGERPRINT.fullmatch(fingerprint) else None
+        find = desk.find if query.lay_out_again is None else desk.lay_out_again
+        kept = find(fingerprint, owner_id) if FINGERPRINT.fullmatch(fingerprint) else None
         if kept is None:
             raise ProblemError(
                 name="layout-unknown",
                 detail=f"no layout is kept under {fingerprint[:64]!r}; make the disc again: the same tune, documents "
                 "and settings give the same layout and the same fingerprint",
             )
-        return disc_page(request, _shown(desk, kept, reason))
+        if kept.fingerprint != fingerprint:
+            return Response(status=303, headers={"Location": f"/discs/{kept.fingerprint}", "Cache-Control": "no-cache"})
+        return disc_page(request, _shown(desk, kept, query.despite_findings))
 
     return routes
 
