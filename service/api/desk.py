@@ -110,7 +110,7 @@ class LayoutDesk:
         raise ProblemError(
             name="layout-outdated",
             detail=f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter "
-            "that ships in another revision now; its tune, documents and settings are kept: lay it out again",
+            "that ships in another revision now; its tune, documents and settings are kept",
             more={"again": f"{address}/again", "settings": f"{address}/settings.json"},
         )
 
