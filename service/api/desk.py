@@ -90,9 +90,50 @@ class LayoutDesk:
         return kept
 
     def find(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
-        """The layout kept under a fingerprint for an owner, else for nobody in particular, or None."""
-        own = None if owner_id is None else self._cache.get(fingerprint, owner_id)
-        return own or self._cache.get(fingerprint)
+        """The layout kept under a fingerprint for an owner, else for nobody in particular, or None.
+
+        What an earlier version of the program kept is laid out again by this one where that gives the same layout: it
+        does where the engine is the same, whose version is part of the fingerprint.
+
+        Raises:
+            ProblemError: An earlier engine laid it out.
+            LayoutError: An earlier version took what this one does not.
+        """
+        kept, is_current = self.find_any(fingerprint, owner_id)
+        if kept is None or is_current:
+            return kept
+        read, number = kept.inputs.read(), kept.disc_number
+        documents = (read.movement, read.cutter, read.settings)
+        if self._planner.fingerprint_of(kept.inputs.tune, *documents, number) == fingerprint:
+            return self._again(kept)
+        address = f"/v1/layouts/{fingerprint}"
+        raise ProblemError(
+            name="layout-outdated",
+            detail=f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter "
+            "that ships in another revision now; its tune, documents and settings are kept",
+            more={"again": f"{address}/again", "settings": f"{address}/settings.json"},
+        )
+
+    def lay_out_again(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
+        """The layout of a fingerprint, or what this version makes of the same where an earlier one kept it; or None.
+
+        Raises:
+            LayoutError: An earlier version took what this one does not.
+        """
+        kept, is_current = self.find_any(fingerprint, owner_id)
+        return kept if kept is None or is_current else self._again(kept)
+
+    def _again(self, kept: KeptLayout) -> KeptLayout:
+        return self.lay_out_discs(kept.inputs, kept.owner_id)[kept.disc_number - 1]
+
+    def find_any(self, fingerprint: str, owner_id: str | None = None) -> tuple[KeptLayout | None, bool]:
+        """A layout with what it was made from, whichever version made it, and whether that was this one."""
+        owners = dict.fromkeys((owner_id, None))
+        for look, is_current in ((self._cache.get, True), (self._cache.earlier, False)):
+            for whose in owners:
+                if (kept := look(fingerprint, whose)) is not None:
+                    return kept, is_current
+        return None, False
 
     def names_given(self, kept: KeptLayout, reason: str | None) -> tuple[str, ...]:
         """The names of the files that are given, without the cutting files where they are kept back.

@@ -3,8 +3,8 @@
 A layout is one file, a ZIP archive of its inputs and its files. It is written beside its name and then
 renamed, so that no worker ever sees half of one; a layout that told of itself alone gets its files in the same way.
 A look at a layout renews the time of its file; where there are too many, the oldest go. The file's name holds a
-digest of the program, so that another version never gives out what an earlier one made, and one of the owner: what
-was laid out for one is not there for another.
+digest of the program, so that another version never gives out files that an earlier one made, and one of the owner:
+what was laid out for one is not there for another.
 """
 
 import contextlib
@@ -32,6 +32,7 @@ log = logging.getLogger("discwright")
 SUFFIX = ".zip"
 PART_SUFFIX = ".part"
 OWNER_ONLY = 0o700
+DIGITS = 8  # of the program's digest in a name
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -92,7 +93,22 @@ class LayoutCache:
             fingerprint: Hex digits; checked by the caller, as it becomes a file name.
             owner_id: Whose; None for those that are nobody's in particular.
         """
-        path = self._path(fingerprint, owner_id)
+        return self._read(self._path(fingerprint, owner_id))
+
+    def earlier(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
+        """The layout that another version of the program kept under a fingerprint, the last of several; None for none.
+
+        Args:
+            fingerprint: As for `get`.
+            owner_id: As for `get`.
+        """
+        found = []
+        for path in self._folder.glob(self._name(fingerprint, "?" * DIGITS, owner_id)):
+            with contextlib.suppress(FileNotFoundError):
+                found.append((path.stat().st_mtime_ns, path))
+        return self._read(max(found)[1]) if found else None
+
+    def _read(self, path: Path) -> KeptLayout | None:
         try:
             layout = _unpacked(path.read_bytes())
         except FileNotFoundError:
@@ -129,9 +145,13 @@ class LayoutCache:
         self._path(fingerprint, owner_id).unlink(missing_ok=True)
 
     def _path(self, fingerprint: str, owner_id: str | None = None) -> Path:
+        return self._folder / self._name(fingerprint, self.program, owner_id)
+
+    @staticmethod
+    def _name(fingerprint: str, program: str, owner_id: str | None) -> str:
         # A digest of the owner's id, which the folder's own user alone may list: no id becomes part of a path.
         whose = "" if owner_id is None else f"-{hashlib.sha256(owner_id.encode()).hexdigest()[:16]}"
-        return self._folder / f"{fingerprint}-{self.program}{whose}{SUFFIX}"
+        return f"{fingerprint}-{program}{whose}{SUFFIX}"
 
     def _let_go(self, keep: Path, taken_bytes: int) -> None:
         seen = []
@@ -157,7 +177,7 @@ def program_digest() -> str:
     digest = hashlib.sha256()
     for name, content in sorted(_sources(files("layout"), "")):
         digest.update(f"{name} {len(content)}\n".encode() + content)
-    return digest.hexdigest()[:8]
+    return digest.hexdigest()[:DIGITS]
 
 
 def _sources(folder: Traversable, inside: str) -> list[tuple[str, bytes]]:

@@ -3,7 +3,7 @@
 import hashlib
 import json
 import re
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from typing import Any
 from urllib.parse import urlencode
@@ -103,14 +103,14 @@ def _add_what_was_brought(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTe
     @describes(layouts.SETTINGS)
     @open_on_loopback(Scope.ORDER)
     def give_settings(fingerprint: str) -> Response:
-        kept = _found(desk, fingerprint)
+        kept = _found_any(desk, fingerprint)
         return _brought(kept, (SETTINGS, kept.inputs.settings, JSON_MEDIA_TYPE), request)
 
     @routes.get("/<fingerprint>/tune.mid")
     @describes(layouts.TUNE)
     @open_on_loopback(Scope.ORDER)
     def give_tune(fingerprint: str) -> Response:
-        kept = _found(desk, fingerprint)
+        kept = _found_any(desk, fingerprint)
         return _brought(kept, (TUNE, kept.inputs.tune, MIDI_MEDIA_TYPE), request)
 
     @routes.post("/<fingerprint>/again")
@@ -118,7 +118,7 @@ def _add_what_was_brought(routes: Blueprint, desk: LayoutDesk, teller: "LayoutTe
     @open_on_loopback(Scope.ORDER)
     def make_again(fingerprint: str) -> Response:
         reason = read_arguments(request, DespiteQuery).despite_findings
-        kept = _found(desk, fingerprint)
+        kept = _found_any(desk, fingerprint)
         asked = read_body(request, Settings, document="settings", most_bytes=limits.document_bytes)
         inputs = replace(kept.inputs, settings=asked.model_dump_json(exclude_unset=True).encode())
         return teller.made(desk.lay_out_discs(inputs, _owner_id()), None, reason)
@@ -298,7 +298,16 @@ def _owner_id() -> str | None:
 
 
 def _found(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
-    kept = desk.find(fingerprint, _owner_id()) if FINGERPRINT.fullmatch(fingerprint) else None
+    return _known(fingerprint, lambda: desk.find(fingerprint, _owner_id()))
+
+
+def _found_any(desk: LayoutDesk, fingerprint: str) -> KeptLayout:
+    """The same, also of an earlier version of the program: what it was made from is there, and its files are not."""
+    return _known(fingerprint, lambda: desk.find_any(fingerprint, _owner_id())[0])
+
+
+def _known(fingerprint: str, find: Callable[[], KeptLayout | None]) -> KeptLayout:
+    kept = find() if FINGERPRINT.fullmatch(fingerprint) else None
     if kept is None:
         raise ProblemError(
             name="layout-unknown",

@@ -76,6 +76,13 @@ KINDS = (
         what_to_do="Layouts are kept for a while only. Post the tune again: the same input gives the same layout.",
     ),
     ProblemKind(
+        name="layout-outdated",
+        status=410,
+        title="An earlier version laid this disc out",
+        what_to_do="POST the document at settings to the address at again: the disc is laid out anew from the same "
+        "tune and documents, under a fingerprint of its own. Look at it before it is cut: it may be another disc.",
+    ),
+    ProblemKind(
         name="hearing-too-long",
         status=422,
         title="The sound would be longer than is made",

@@ -5,7 +5,7 @@ import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
-from typing import Any
+from typing import Any, Literal
 from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
@@ -46,6 +46,12 @@ class Ordering:
     documents: Mapping[str, Mapping[str, str]]
 
 
+class DiscQuery(DespiteQuery):
+    """How a disc is looked at; and whether one that an earlier version laid out shall be laid out anew."""
+
+    lay_out_again: Literal["yes"] | None = None
+
+
 def disc_routes(desk: LayoutDesk) -> Blueprint:
     """The page of a layout.
 
@@ -58,17 +64,21 @@ def disc_routes(desk: LayoutDesk) -> Blueprint:
     @gives_page
     @open_on_loopback(Scope.ORDER)
     def show_disc(fingerprint: str) -> Response:
-        reason = read_arguments(request, DespiteQuery).despite_findings
+        query = read_arguments(request, DiscQuery)
         asker = asker_or_none()
         owner_id = None if asker is None else asker.owner_id
-        kept = desk.find(fingerprint, owner_id) if FINGERPRINT.fullmatch(fingerprint) else None
+        find = desk.find if query.lay_out_again is None else desk.lay_out_again
+        kept = find(fingerprint, owner_id) if FINGERPRINT.fullmatch(fingerprint) else None
         if kept is None:
             raise ProblemError(
                 name="layout-unknown",
                 detail=f"no layout is kept under {fingerprint[:64]!r}; make the disc again: the same tune, documents "
                 "and settings give the same layout and the same fingerprint",
             )
-        return disc_page(request, _shown(desk, kept, reason), beside={"ordering": _ordering(kept, asker)})
+        if kept.fingerprint != fingerprint:
+            return Response(status=303, headers={"Location": f"/discs/{kept.fingerprint}", "Cache-Control": "no-cache"})
+        shown = _shown(desk, kept, query.despite_findings)
+        return disc_page(request, shown, beside={"ordering": _ordering(kept, asker)})
 
     return routes
 

@@ -105,7 +105,7 @@ TELL = Operation(
         Answer(status=200, meaning="The layout.", contents={JSON_MEDIA_TYPE: LayoutAnswer}, headers=(ETAG,)),
         NOT_MODIFIED,
     ),
-    problems=("layout-unknown",),
+    problems=("layout-unknown", "layout-outdated"),
     examples=(Example(status=200, given="a layout"),),
 )
 _FILES = {media_type.partition(";")[0]: None for media_type in MEDIA_TYPES.values()}
@@ -124,7 +124,7 @@ FILE = Operation(
         ),
         NOT_MODIFIED,
     ),
-    problems=("layout-unknown", "not-good-to-cut"),
+    problems=("layout-unknown", "layout-outdated", "not-good-to-cut"),
     examples=(Example(status=200, given="a layout", path={"file_name": "disc.svg"}),),
 )
 SETTINGS = Operation(

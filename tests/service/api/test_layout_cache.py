@@ -3,6 +3,7 @@ import re
 import subprocess
 import sys
 import time
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -132,6 +133,22 @@ def test_another_program_s_layouts_are_not_given_out(tmp_path: Path) -> None:
 
     assert cache.get(layout(1).fingerprint) is None
     assert re.fullmatch("[0-9a-f]{8}", cache.program)
+
+
+def test_of_what_other_programs_kept_the_last_is_found_and_no_other_owner_s(tmp_path: Path) -> None:
+    cache, older, old = (LayoutCache(settings(tmp_path)) for _ in range(3))
+    older.program, old.program = "00000001", "00000002"
+    put_in_order(old, layout(1))
+    older.put(replace(layout(1), title="Older"))  # of an earlier program, yet used later
+    old.put(replace(layout(1), owner_id="owner_web"))  # and this later still
+
+    found, of_owner = (cache.earlier(layout(1).fingerprint, owner) for owner in (None, "owner_web"))
+
+    assert found is not None
+    assert of_owner is not None
+    assert (found.title, found.owner_id, of_owner.title, of_owner.owner_id) == ("Older", None, "Dünung", "owner_web")
+    assert cache.earlier(layout(1).fingerprint, "owner_other") is None
+    assert cache.earlier(layout(2).fingerprint) is None
 
 
 WORKER = """

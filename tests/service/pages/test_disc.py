@@ -14,7 +14,6 @@ from flask.testing import FlaskClient
 
 from layout.file_names import CUTTING_FILES
 from service.access.scopes import Scope
-from service.app import create_app
 from service.pages.assets import assets
 from service.pages.disc import disc_page
 from service.pages.disc_shown import ShownDisc
@@ -23,6 +22,7 @@ from service.settings import AccessSettings, PlaceSettings, ServiceSettings
 from tests.service.api.guarded import bearing, new_key
 from tests.service.conftest import parts_of
 from tests.service.fakes import MANY
+from tests.service.pages.browsing import browsing
 from tests.service.pages.discs_shown import crowded, shown
 from tests.service.pages.test_own_routes import HTML, Tags
 from tests.service.shop import TUNE
@@ -38,10 +38,10 @@ def client(tmp_path_factory: pytest.TempPathFactory) -> Iterator[FlaskClient]:
     """A service on loopback that is open to this machine's own programs."""
     folder = tmp_path_factory.mktemp("service")
     parts = parts_of(folder)
-    client = create_app(_open_settings(parts.settings.places.data_directory, folder)).test_client()
-    client.web = bearing(new_key(parts, *Scope, owner="Bellgrove"))  # type: ignore[attr-defined]
-    client.other = bearing(new_key(parts, *Scope, owner="Thornbury"))  # type: ignore[attr-defined]
-    yield client
+    with browsing(_open_settings(parts.settings.places.data_directory, folder)) as client:
+        client.web = bearing(new_key(parts, *Scope, owner="Bellgrove"))  # type: ignore[attr-defined]
+        client.other = bearing(new_key(parts, *Scope, owner="Thornbury"))  # type: ignore[attr-defined]
+        yield client
     parts.store.close()
 
 

@@ -10,12 +10,12 @@ from flask.testing import FlaskClient
 
 from layout.documents import shipped_movement, shipped_text
 from service.access.scopes import Scope
-from service.app import create_app
 from service.pages.machines_comb import comb_chart
 from service.pages.machines_told import tracks_of, unit_of, values_of
 from service.parts import Parts
 from service.store.documents import KeptDocument
 from tests.service.api.guarded import bearing, new_key
+from tests.service.pages.browsing import browsing, on_both_databases
 from tests.service.pages.test_own_routes import HTML, Tags
 
 MOVEMENTS = ("fernhollow-31", "mossbrook-67", "tarnlight-17")
@@ -23,7 +23,7 @@ MOVEMENTS = ("fernhollow-31", "mossbrook-67", "tarnlight-17")
 
 @pytest.fixture
 def client(parts: Parts) -> Iterator[FlaskClient]:
-    with create_app(parts.settings).test_client() as client:
+    with browsing(parts.settings) as client:
         yield client
 
 
@@ -42,6 +42,7 @@ def save(client: FlaskClient, who: dict[str, str], document: dict[str, Any]) -> 
     assert answer.status_code == 201, answer.text
 
 
+@on_both_databases("documents in force in the order of their ids, page by page")
 def test_the_list_of_movements_shows_what_ships_to_all_and_an_owners_own_to_its_key(
     client: FlaskClient, parts: Parts, own: dict[str, str]
 ) -> None:

@@ -11,11 +11,11 @@ from flask.testing import FlaskClient
 
 from layout.documents import Cutter, Movement, shipped_text
 from service.access.scopes import Scope
-from service.app import create_app
 from service.pages.assets import assets
 from service.pages.texts import for_scripts
 from service.parts import Parts
 from tests.service.api.guarded import bearing, new_key
+from tests.service.pages.browsing import browsing
 from tests.service.pages.test_own_routes import HTML
 
 FORBIDDEN = r"innerHTML|outerHTML|insertAdjacentHTML|document\.write|\beval\(|new Function|window\.\w+ ="
@@ -26,7 +26,7 @@ BEFORE = "movements."  # the keys of this form's words, as scripts ask for them
 
 @pytest.fixture
 def client(parts: Parts) -> Iterator[FlaskClient]:
-    with create_app(parts.settings).test_client() as client:
+    with browsing(parts.settings) as client:
         yield client
 
 

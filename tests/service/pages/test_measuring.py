@@ -8,9 +8,9 @@ import pytest
 from flask.testing import FlaskClient
 
 from layout.documents import Movement
-from service.app import create_app
 from service.pages.measuring import SECTIONS, section_of, sections
 from service.parts import Parts
+from tests.service.pages.browsing import browsing
 from tests.service.pages.test_own_routes import HTML, Tags
 
 NOT_MEASURED = {"/format", "/id", "/revision", "/title"}
@@ -18,7 +18,7 @@ NOT_MEASURED = {"/format", "/id", "/revision", "/title"}
 
 @pytest.fixture
 def client(parts: Parts) -> Iterator[FlaskClient]:
-    with create_app(parts.settings).test_client() as client:
+    with browsing(parts.settings) as client:
         yield client
 
 

@@ -7,16 +7,15 @@ from html.parser import HTMLParser
 from typing import Any
 
 import pytest
-from flask.testing import FlaskClient
 from pydantic import BaseModel
 
 from layout.documents import Settings
 from layout.documents.settings import Ruling
-from service.app import create_app
 from service.pages.assets import assets
 from service.pages.texts import for_scripts
 from service.parts import Parts
 from service.settings import AccessSettings, ServiceSettings
+from tests.service.pages.browsing import browsing
 
 HTML = {"Accept": "text/html"}
 NO_FIELD = {"format", "rulings"}  # rulings are made on the disc
@@ -63,8 +62,7 @@ class Fields(HTMLParser):
 @pytest.fixture
 def shown(parts: Parts) -> Iterator[Fields]:
     settings = ServiceSettings(places=parts.settings.places, access=AccessSettings(listens_on_loopback=True))
-    client: FlaskClient
-    with create_app(settings).test_client() as client:
+    with browsing(settings) as client:
         answer = client.get("/new", headers=HTML)
         assert answer.status_code == 200
         yield Fields(answer.text)

@@ -19,6 +19,7 @@ from service.pages.texts import for_scripts, texts
 from service.parts import Parts
 from tests.service.api.guarded import bearing, new_key
 from tests.service.api.test_orders import NO_ROOM, Shop
+from tests.service.pages.browsing import on_both_databases
 from tests.service.pages.pages_read import Element, page_read
 from tests.service.pages.test_own_routes import HTML
 from tests.service.shop import planned, taken
@@ -78,6 +79,7 @@ def test_where_no_order_is_yet_the_list_says_how_one_comes_in(shop: Shop) -> Non
     assert "No order is like that." in seen(shop, "/orders?state=ready").text
 
 
+@on_both_databases("orders by the moment of their last change, backwards")
 def test_the_list_tells_state_reference_movement_and_change_the_last_changed_first(shop: Shop) -> None:
     first, second = shop.ready(), shop.placed({"movement": "mossbrook-67", "reference": "W-1002"})
 
@@ -93,6 +95,7 @@ def test_the_list_tells_state_reference_movement_and_change_the_last_changed_fir
     assert shown == re.sub(r"\.\d+Z", "+00:00", shop.seen(first)["updated_at"])
 
 
+@on_both_databases("orders of one state and reference, backwards")
 def test_the_list_is_narrowed_by_state_and_reference_and_leaves_empty_fields_out(shop: Shop) -> None:
     ready = shop.ready()
     shop.placed({"movement": "fernhollow-31", "reference": "W-1002"})
@@ -110,6 +113,7 @@ def test_the_list_is_narrowed_by_state_and_reference_and_leaves_empty_fields_out
     assert asked(shop, "/orders?state=lost").status_code == 400
 
 
+@on_both_databases("orders before a moment and an id, backwards")
 def test_the_list_is_read_on_from_page_to_page_and_shows_each_order_once(any_parts: Parts) -> None:
     with closing(Shop(any_parts)) as shop:
         placed = [f"/orders/{shop.placed()}" for _ in range(5)]
@@ -229,6 +233,7 @@ def test_where_a_person_must_decide_the_findings_stand_on_the_page_and_a_reason_
     assert "Released although something stood: a try" in part(order_seen(shop, order_id), "plans").text
 
 
+@on_both_databases("every plan and event of an order in one transaction")
 def test_a_plan_that_is_superseded_is_marked_and_nothing_of_it_is_called_fit_to_cut(shop: Shop) -> None:
     order_id = shop.ready()
     shop.decide(order_id, "release", shop.shop, by="A. Maker")
@@ -299,6 +304,7 @@ def test_a_key_is_offered_what_its_scopes_allow(shop: Shop) -> None:
     assert forms(order_seen(shop, order_id, shop.web)) == ["replan"]  # only the shop calls its files back
 
 
+@on_both_databases("a deleted order with what is left of its plans and events")
 def test_a_deleted_order_says_so_and_offers_nothing(shop: Shop) -> None:
     order_id = shop.ready()
     shop.decide(order_id, "cancel", shop.web)

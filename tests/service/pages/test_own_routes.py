@@ -7,18 +7,18 @@ from html.parser import HTMLParser
 import pytest
 from flask.testing import FlaskClient
 
-from service.app import create_app
 from service.pages.assets import address_of, assets
 from service.pages.rendering import POLICY
 from service.pages.texts import for_scripts, text_of, texts
 from service.parts import Parts
+from tests.service.pages.browsing import browsing
 
 HTML = {"Accept": "text/html,application/xhtml+xml,*/*;q=0.8"}
 
 
 @pytest.fixture
 def client(parts: Parts) -> Iterator[FlaskClient]:
-    with create_app(parts.settings).test_client() as client:
+    with browsing(parts.settings) as client:
         yield client
 
 

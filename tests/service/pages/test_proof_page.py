@@ -12,6 +12,7 @@ import pytest
 from service.parts import Parts
 from tests.service.api.guarded import problem_of
 from tests.service.api.test_orders import MINE, NO_ROOM, Shop
+from tests.service.pages.browsing import on_both_databases
 from tests.service.pages.pages_read import Element, page_read
 from tests.service.pages.test_own_routes import HTML
 from tests.service.shop import planned
@@ -184,6 +185,7 @@ def test_what_was_found_is_told_in_words_before_a_customer_decides(shop: Shop) -
     assert "Against cutting it as it is" in page.text
 
 
+@on_both_databases("what was said about one plan of an order")
 def test_a_decision_is_asked_for_with_a_name_and_shown_once_it_was_said(shop: Shop) -> None:
     order_id = shop.ready()
     path = link_to(shop, order_id)

@@ -8,9 +8,9 @@ import pytest
 from flask.testing import FlaskClient
 
 from service.api.problems import PROBLEMS
-from service.app import create_app
 from service.pages.reference_words import blocks_of, kind_of
 from service.parts import Parts
+from tests.service.pages.browsing import browsing
 
 
 class Shown(HTMLParser):
@@ -36,7 +36,7 @@ class Shown(HTMLParser):
 
 @pytest.fixture
 def client(parts: Parts) -> Iterator[FlaskClient]:
-    with create_app(parts.settings).test_client() as client:
+    with browsing(parts.settings) as client:
         yield client
 
 

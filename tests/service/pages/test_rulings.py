@@ -15,12 +15,12 @@ import pytest
 from flask.testing import FlaskClient
 
 import service.pages
-from service.app import create_app
 from service.pages.assets import assets
 from service.pages.texts import for_scripts
 from service.settings import AccessSettings, PlaceSettings, ServiceSettings
 from tests.service.conftest import parts_of
 from tests.service.fakes import MANY
+from tests.service.pages.browsing import browsing
 from tests.service.pages.discs_shown import shown
 from tests.service.pages.test_disc import FORBIDDEN, _page_of
 from tests.service.pages.test_own_routes import HTML
@@ -60,7 +60,8 @@ def client(tmp_path: Path) -> Iterator[FlaskClient]:
     parts = parts_of(tmp_path)
     places = PlaceSettings(data_directory=parts.settings.places.data_directory, cache_directory=tmp_path / "kept")
     access = AccessSettings(listens_on_loopback=True, read_rate=MANY, write_rate=MANY)
-    yield create_app(ServiceSettings(places=places, access=access)).test_client()
+    with browsing(ServiceSettings(places=places, access=access)) as client:
+        yield client
     parts.store.close()
 
 
