@@ -117,6 +117,9 @@ class Within:
         number = handler(schema)
         if handler.mode == "serialization" or "anyOf" in number:  # said already by the range this one is written over
             return number
+        number = {
+            name: int(said) if isinstance(said, float) and said.is_integer() else said for name, said in number.items()
+        }
         worth = {
             name: {key: part for key, part in said.items() if key != "title"}
             for name, said in Stated.model_json_schema()["properties"].items()

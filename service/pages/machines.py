@@ -69,6 +69,11 @@ FORM: dict[str, tuple[tuple[str, tuple[str, ...]], ...]] = {
         ("", ("rates",)),
     ),
 }
+# What may be left out and is seldom: shown though it is not stated. Places without the numbers of lists.
+USUAL = (
+    *("/gantry_offset_mm", "/damper_arc_mm", "/damper_recovery_s", "/disc/flatness_mm", "/disc/run_out_mm"),
+    *("/projection/depth_mm", "/projection/length_mm", "/drawn_from"),
+)
 FIELD = "script.movements.field_"  # texts that name the fields
 
 
@@ -141,6 +146,7 @@ def _form(kind: str, text: str, begun: Mapping[str, str | None]) -> Response:
         "page_at": f"/{kind}s/",
         "units": {name: unit_of(name) for name in names if unit_of(name)},
         "measured": measured,
+        "usual": USUAL,
         "sections": [
             {"title": None if title == "" else text_of(f"movements.section_{title}"), "names": names}
             for title, names in FORM[kind]

@@ -328,6 +328,18 @@ def test_what_is_not_stated_is_folded_away_and_opened_where_something_is_to_mend
     assert fault(page, "/disc/rolled_along_deg") == "361 ° is out of range; allowed is from -360 to 360 °"
 
 
+def test_a_part_that_is_not_stated_is_begun_by_one_button_and_left_out_by_another(signed_in: Window) -> None:
+    page = form_of(signed_in, "/movements/add")
+    assert field(page, "/damper_arc_mm").is_visible()  # usually stated, so not folded away
+
+    page.locator(".absent button", has_text="Rings where nothing may be cut").click()
+    field(page, "/keep_out/0/why").fill("spindle plate")
+    assert document(page)["keep_out"] == [{"why": "spindle plate"}]
+    page.locator('[data-pointer="/keep_out"] button.leave').click()
+
+    assert "keep_out" not in document(page)
+
+
 @pytest.mark.parametrize("size", ["wide", "phone"])
 @pytest.mark.parametrize("scheme", ["light", "dark"])
 def test_a_form_with_faults_shown_fits_its_window(

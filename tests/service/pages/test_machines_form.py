@@ -9,12 +9,13 @@ from typing import Any
 import pytest
 from flask.testing import FlaskClient
 from pydantic import BaseModel
+from pydantic.fields import FieldInfo
 
 from layout.documents import Cutter, Movement, shipped_text
 from service.access.scopes import Scope
 from service.app import create_app
 from service.pages.assets import assets
-from service.pages.machines import FORM
+from service.pages.machines import FORM, USUAL
 from service.pages.texts import for_scripts
 from service.parts import Parts
 from tests.service.api.guarded import bearing, new_key
@@ -124,3 +125,17 @@ def test_every_field_of_a_document_stands_in_one_section_of_its_form(kind: str, 
     placed = [name for _, names in FORM[kind] for name in names]
 
     assert sorted(placed) == sorted(model.model_fields)
+
+
+def test_what_is_usually_stated_is_something_that_may_be_left_out() -> None:
+    def said(model: type[BaseModel], place: str) -> FieldInfo:
+        *parts, last = place.strip("/").split("/")
+        for part in parts:
+            inner = model.model_fields[part].annotation
+            assert isinstance(inner, type)
+            model = inner
+        return model.model_fields[last]
+
+    optional = [said(Cutter if place == "/drawn_from" else Movement, place) for place in USUAL]
+
+    assert [field.is_required() for field in optional] == [False] * (len(USUAL) - 1) + [True]

@@ -4,7 +4,7 @@ import { text } from "../texts.js";
 import { cellControl } from "./cells.js";
 import { combOf } from "./comb.js";
 import { leaf, wordsOf } from "./leaves.js";
-import { pointerOf } from "./places.js";
+import { generalOf, pointerOf } from "./places.js";
 import { begun, chosenOf, fieldsOf, isFlat, isGroup, itemOf, namedOf } from "./shapes.js";
 import { drawnTable } from "./tables.js";
 
@@ -32,7 +32,7 @@ const drawnOne = (one) => (isGroup(one.shape) ? group(one) : leaf(one));
 const fieldsIn = (shape, path, desk) => usualFirst(told(shape, path, desk), desk);
 
 function usualFirst(fields, desk) {
-  const isRare = (one) => !one.needed && desk.valueAt(one.path) === undefined;
+  const isRare = (one) => !one.needed && desk.valueAt(one.path) === undefined && !desk.data.usual.includes(generalOf(one.path));
   const rare = fields.filter(isRare);
   const drawn = fields.filter((one) => !isRare(one)).map(drawnOne);
   if (!rare.length) return drawn;
@@ -46,8 +46,9 @@ export function group(asked) {
   const redraw = () => holder.replaceChildren(...content());
   const content = () => {
     const value = desk.valueAt(path);
-    if (!needed && (value === undefined || value === null) && shape.kind !== "list") {
-      return [el("button", { type: "button", class: "plain", onclick: () => restate(begun(shape)) }, worded("state", { name: words })), el("p", { class: "fault" })];
+    if (!needed && (value === undefined || value === null)) {
+      const first = shape.kind === "list" ? [begun(itemOf(shape))] : begun(shape);
+      return [el("button", { type: "button", class: "plain", onclick: () => restate(first) }, worded("state", { name: words })), el("p", { class: "fault" })];
     }
     const draw = { fields: drawnFields, list: drawnList, row: drawnRow, named: drawnNamed, either: drawnEither }[shape.kind];
     return [el("fieldset", {}, el("legend", {}, words), el("p", { class: "fault" }), [draw(asked, redraw)].flat(), leaveOut())];
