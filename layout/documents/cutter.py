@@ -107,7 +107,7 @@ class Tool(Part):
         }
     )
 
-    tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$")]
+    tool: Annotated[str, Field(pattern=r"^[A-Z0-9][A-Z0-9-]{0,15}$", examples=["L12"])]
     title: Title
     makes: Literal["lance", "slot", "hole"]
     footprint_length_mm: Length
@@ -154,7 +154,7 @@ class Tool(Part):
 class Layer(Part):
     """The layer name and colour index a cutter wants for one of ours."""
 
-    name: Annotated[str, Field(pattern=r"^[A-Za-z0-9_$-]{1,31}$")]
+    name: Annotated[str, Field(pattern=r"^[A-Za-z0-9_$-]{1,31}$", examples=["CUT_1"])]
     colour: Annotated[int, Field(ge=1, le=255)]
 
 

@@ -32,10 +32,10 @@ def _money(value: object) -> object:
 Money = Annotated[
     Decimal,
     BeforeValidator(_money),
-    WithJsonSchema({"type": "string", "pattern": f"^{MONEY_PATTERN}$"}, mode="validation"),
+    WithJsonSchema({"type": "string", "pattern": f"^{MONEY_PATTERN}$", "examples": ["12.50"]}, mode="validation"),
 ]
 Ratio = Annotated[float, Within(gt=0, le=MOST_RATIO)]
-Word = Annotated[str, Field(pattern=r"^[A-Z]([A-Z0-9 .-]|\{tool\}){0,39}$")]
+Word = Annotated[str, Field(pattern=r"^[A-Z]([A-Z0-9 .-]|\{tool\}){0,39}$", examples=["M20"])]
 
 
 class Feeds(Part):
@@ -54,7 +54,7 @@ class Feeds(Part):
 class Rates(Part):
     """What the shop asks for; every line of a price comes from one of these. Amounts are decimal text."""
 
-    currency: Annotated[str, Field(pattern=r"^[A-Z]{3}$")]
+    currency: Annotated[str, Field(pattern=r"^[A-Z]{3}$", examples=["EUR"])]
     setup: Money | None = None
     per_minute: Money | None = None
     per_pierce: Money | None = None

@@ -117,6 +117,9 @@ class Within:
         number = handler(schema)
         if handler.mode == "serialization" or "anyOf" in number:  # said already by the range this one is written over
             return number
+        number = {
+            name: int(said) if isinstance(said, float) and said.is_integer() else said for name, said in number.items()
+        }
         worth = {
             name: {key: part for key, part in said.items() if key != "title"}
             for name, said in Stated.model_json_schema()["properties"].items()
@@ -144,7 +147,7 @@ Angle = Annotated[float, Within(ge=-FULL_TURN_DEG, le=FULL_TURN_DEG)]
 PositiveAngle = Annotated[float, Within(gt=0, le=FULL_TURN_DEG)]
 Positive = Annotated[float, Within(ge=LEAST_OF_OTHER, le=MOST_OF_OTHER)]
 NotNegative = Annotated[float, Within(ge=0, le=MOST_OF_OTHER)]
-Identifier = Annotated[str, Field(pattern=f"^{ID_PATTERN}$"), BeforeValidator(_identifier)]
+Identifier = Annotated[str, Field(pattern=f"^{ID_PATTERN}$", examples=["larkfield-9"]), BeforeValidator(_identifier)]
 Title = Annotated[str, Field(min_length=1, max_length=120)]
 
 DocumentT = TypeVar("DocumentT", bound=Part)

@@ -30,7 +30,7 @@ class Tooth(Part):
 
     tooth: Annotated[int, Field(ge=1)]
     track: Annotated[int, Field(ge=1)]
-    pitch: Annotated[str, Field(json_schema_extra={"pattern": PITCH_PATTERN})]
+    pitch: Annotated[str, Field(json_schema_extra={"pattern": PITCH_PATTERN, "examples": ["C4", "F#5", "Bb3"]})]
     cents: Annotated[Offset, Within(ge=-MOST_CENTS, le=MOST_CENTS)] = 0.0
     damped: bool = True
     usable: bool = True

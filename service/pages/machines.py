@@ -23,7 +23,7 @@ from service.pages.machines_told import tracks_of, unit_of, values_of
 from service.pages.measuring import SECTIONS
 from service.pages.page_views import gives_page
 from service.pages.rendering import page
-from service.pages.texts import texts
+from service.pages.texts import text_of, texts
 from service.parts import Parts
 from service.store.documents import (
     SHIPPED_IDS,
@@ -33,6 +33,47 @@ from service.store.documents import (
     shipped_document,
 )
 
+# The sections of the forms, each with its fields, in the order in which a movement is measured: the name of its title,
+# or "" where the one field has a title of its own.
+FORM: dict[str, tuple[tuple[str, tuple[str, ...]], ...]] = {
+    "movement": (
+        ("about", ("title", "id", "revision", "format")),
+        ("turning", ("turns", "revolution_s", "fastest_revolution_s", "before_music_deg", "after_music_deg")),
+        ("", ("disc",)),
+        ("", ("keep_out",)),
+        ("", ("tracks",)),
+        ("wheels", ("gantry_offset_mm", "star_wheel", "projection")),
+        ("dampers", ("damper_arc_mm", "damper_recovery_s")),
+        ("comb", ("tooth_quality", "teeth")),
+        ("", ("drive",)),
+    ),
+    "cutter": (
+        ("about", ("title", "id", "kind", "format")),
+        (
+            "cutting",
+            (
+                *("kerf_mm", "kerf_compensated", "min_web_mm", "min_slot_mm"),
+                *("position_tolerance_mm", "angle_tolerance_deg", "tolerance_class"),
+            ),
+        ),
+        ("", ("fold",)),
+        ("", ("tools",)),
+        ("", ("press",)),
+        ("drawing", ("drawn_from", "burr_side", "drawing_release", "labels")),
+        ("", ("layers",)),
+        ("", ("lead_in",)),
+        ("", ("bridges",)),
+        ("", ("feature_rules",)),
+        ("", ("net_section",)),
+        ("", ("feeds",)),
+        ("", ("rates",)),
+    ),
+}
+# What may be left out and is seldom: shown though it is not stated. Places without the numbers of lists.
+USUAL = (
+    *("/gantry_offset_mm", "/damper_arc_mm", "/damper_recovery_s", "/disc/flatness_mm", "/disc/run_out_mm"),
+    *("/projection/depth_mm", "/projection/length_mm", "/drawn_from"),
+)
 FIELD = "script.movements.field_"  # texts that name the fields
 
 
@@ -101,9 +142,15 @@ def _form(kind: str, text: str, begun: Mapping[str, str | None]) -> Response:
         "text": text,
         "schema_at": f"/v1/schemas/{kind}",
         "save_at": f"/v1/{kind}s/",
+        "check_at": f"/v1/{kind}s/check",
         "page_at": f"/{kind}s/",
         "units": {name: unit_of(name) for name in names if unit_of(name)},
         "measured": measured,
+        "usual": USUAL,
+        "sections": [
+            {"title": None if title == "" else text_of(f"movements.section_{title}"), "names": names}
+            for title, names in FORM[kind]
+        ],
     }
     return page(request, "movement_edit.html", scripts=("movements",), kind=kind, begun=begun, data=data)
 

@@ -81,6 +81,8 @@ def _plain(schema: Schema) -> Markup:
     if kind == "object" and isinstance(schema.get("additionalProperties"), dict):
         inside = kind_of(schema["additionalProperties"])
         return Markup(escape(text_of("reference.kind_map"))) + Markup(" ") + inside
+    if kind == "object" and "plus_minus" in schema.get("properties", {}):
+        return Markup(escape(text_of("reference.kind_worth")))
     if schema.get("format") == "binary":
         return Markup(escape(text_of("reference.kind_bytes")))
     kinds = kind if isinstance(kind, list) else [kind]
@@ -94,6 +96,8 @@ def _bounds(schema: Schema) -> Markup:
     made = Markup(escape("".join(f", {words}" for words in told)))
     if "pattern" in schema:
         made += Markup(", <code>{}</code>").format(schema["pattern"])
+        examples = Markup(", ").join(Markup("<code>{}</code>").format(one) for one in schema.get("examples", ()))
+        made += Markup(escape(text_of("reference.such_as"))) + examples if examples else Markup()
     return made
 
 

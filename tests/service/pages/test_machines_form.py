@@ -8,10 +8,13 @@ from typing import Any
 
 import pytest
 from flask.testing import FlaskClient
+from pydantic import BaseModel
+from pydantic.fields import FieldInfo
 
 from layout.documents import Cutter, Movement, shipped_text
 from service.access.scopes import Scope
 from service.pages.assets import assets
+from service.pages.machines import FORM, USUAL
 from service.pages.texts import for_scripts
 from service.parts import Parts
 from tests.service.api.guarded import bearing, new_key
@@ -98,7 +101,8 @@ def test_the_scripts_of_the_form_have_every_word_they_show_and_no_word_more() ->
     had = {key.removeprefix(BEFORE) for key in for_scripts(("movements",)) if key.startswith(BEFORE)}
     had -= {key for key in had if key.startswith(("field_", "basis_measured", "basis_calculated", "basis_assumed"))}
     asked = set(re.findall(r'(?:worded\(|text\(`?"?movements\.|"movements\.)"?(\w+)"', everything))
-    asked |= {"all_well", "to_mend", "to_mend_one", "yes", "no", "optional", "by_default"}
+    asked |= {"all_well", "to_mend", "to_mend_one", "yes", "no", "by_default", "fault_pattern", "fault_like"}
+    asked |= {"pasted", "pasted_some"}
 
     assert had - asked == set()
     assert asked <= had
@@ -114,3 +118,24 @@ def test_a_script_of_the_form_is_short_makes_nothing_of_strings_and_imports_what
         source = SCRIPTS[str((Path("/", name).parent / found).resolve())[1:]]
         for wanted in names.split(","):
             assert re.search(rf"export (?:async )?(?:function|const|class) {wanted.strip()}\b", source), (found, wanted)
+
+
+@pytest.mark.parametrize(("kind", "model"), [("movement", Movement), ("cutter", Cutter)])
+def test_every_field_of_a_document_stands_in_one_section_of_its_form(kind: str, model: type[BaseModel]) -> None:
+    placed = [name for _, names in FORM[kind] for name in names]
+
+    assert sorted(placed) == sorted(model.model_fields)
+
+
+def test_what_is_usually_stated_is_something_that_may_be_left_out() -> None:
+    def said(model: type[BaseModel], place: str) -> FieldInfo:
+        *parts, last = place.strip("/").split("/")
+        for part in parts:
+            inner = model.model_fields[part].annotation
+            assert isinstance(inner, type)
+            model = inner
+        return model.model_fields[last]
+
+    optional = [said(Cutter if place == "/drawn_from" else Movement, place) for place in USUAL]
+
+    assert [field.is_required() for field in optional] == [False] * (len(USUAL) - 1) + [True]

@@ -7,6 +7,7 @@ from html.parser import HTMLParser
 import pytest
 from flask.testing import FlaskClient
 
+from layout.documents import Cutter
 from service.api.problems import PROBLEMS
 from service.pages.reference_words import blocks_of, kind_of
 from service.parts import Parts
@@ -120,6 +121,14 @@ def test_a_schema_is_told_in_words_with_its_bounds() -> None:
         'list of <a href="#shape-Ruling">Ruling</a>'
     )
     assert kind_of({"enum": ["none", "all"]}) == "<code>&#34;none&#34;</code> or <code>&#34;all&#34;</code>"
+
+
+def test_a_number_of_a_document_is_told_with_its_range_and_that_it_may_say_its_worth() -> None:
+    schema = Cutter.model_json_schema()["properties"]
+
+    told = "number, at least 0.001, at most 50 or that number with its worth: value, plus_minus, basis"
+    assert str(kind_of(schema["min_web_mm"])) == told
+    assert str(kind_of(schema["id"])).endswith("</code>, such as <code>larkfield-9</code>")
 
 
 def test_a_body_that_is_sent_with_several_queries_is_shown_once(shown: Shown) -> None:

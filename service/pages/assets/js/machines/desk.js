@@ -2,7 +2,7 @@
 import { el, find, findAll } from "../dom.js";
 import { text } from "../texts.js";
 import { faultsOf } from "./checking.js";
-import { fieldsIn } from "./groups.js";
+import { sectionsIn } from "./groups.js";
 import { at, pointerOf, put } from "./places.js";
 import { shapeOf } from "./shapes.js";
 import { written } from "./writing.js";
@@ -11,6 +11,9 @@ export class Desk {
   constructor({ data, schema, form, area }) {
     Object.assign(this, { data, form, area, shape: shapeOf(schema, schema), value: {}, isJson: true, showsAll: false });
     this.touched = new Set();
+    this.wideTables = new Set(); // pointers of tables that show all their columns
+    this.onChange = () => {};
+    this.order = data.sections.flatMap(({ names }) => names);
     this.told = new Map(); // faults that the service found, by pointer, till their place is changed
     this.watched = new Map(); // folded items: how they are built and summed up
     area.addEventListener("input", () => this.takeText());
@@ -33,6 +36,7 @@ export class Desk {
     this.area.value = `${written(this.value)}\n`;
     this.isChanged = true;
     this.show();
+    this.onChange();
   }
 
   // Takes a text as the document; the fields wait as long as it is no JSON object.
@@ -55,12 +59,19 @@ export class Desk {
       this.draw();
     }
     this.show();
+    this.onChange();
+  }
+
+  // Takes what the service found in place of what it found before.
+  take(faults) {
+    this.told = new Map(faults.map(({ pointer, detail }) => [pointer, detail]));
+    this.show();
   }
 
   draw() {
     const open = findAll("details[open]", this.form).map((fold) => fold.dataset.pointer);
     this.watched.clear();
-    this.form.replaceChildren(...fieldsIn(this.shape, [], this));
+    this.form.replaceChildren(...sectionsIn(this.shape, this));
     for (const pointer of open) this.unfold(pointer);
   }
 
@@ -78,15 +89,20 @@ export class Desk {
     const parts = pointer.split("/");
     const places = parts.map((_, end) => parts.slice(0, end + 1).join("/"));
     for (const place of places) this.unfold(place);
-    const nearest = places.reverse().map((place) => this.elementAt(place)).find(Boolean) ?? this.form;
+    const nearest = [...places].reverse().map((place) => this.elementAt(place)).find(Boolean) ?? this.form;
+    for (let fold = nearest.closest("details"); fold; fold = fold.parentElement.closest("details")) fold.open = true;
     this.show();
     (find("input:not([readonly]), select, summary, button", nearest) ?? nearest).focus();
   }
 
-  faults() {
-    const seen = new Map(faultsOf(this.shape, this.value).map(({ path, why }) => [pointerOf(path), why]));
-    return new Map([...seen, ...this.told]);
+  // What can be seen to be wrong here, by pointer, in the order of the form.
+  ownFaults() {
+    const placeOf = ({ path }) => this.order.indexOf(path[0]);
+    const found = faultsOf(this.shape, this.value, this.data.units).sort((one, other) => placeOf(one) - placeOf(other));
+    return new Map(found.map(({ path, why }) => [pointerOf(path), why]));
   }
+
+  faults() { return new Map([...this.ownFaults(), ...this.told]); }
 
   show() {
     for (const [fold, how] of this.watched) {
@@ -96,9 +112,17 @@ export class Desk {
     const faults = this.isJson ? this.faults() : new Map();
     const isShown = (pointer) => this.showsAll || this.told.has(pointer) || this.isTouched(pointer);
     for (const place of findAll("[data-pointer]", this.form)) mark(place, faults, isShown);
-    const count = [...faults.keys()].length;
-    const words = count === 0 ? "all_well" : count === 1 ? "to_mend_one" : "to_mend";
-    document.getElementById("count").textContent = this.isJson ? text(`movements.${words}`, { count }) : "";
+    for (const fold of findAll("details.rare", this.form)) fold.classList.toggle("to-mend", find(".fault:not(:empty)", fold) !== null);
+    this.count(faults);
+  }
+
+  count(faults) {
+    const words = faults.size === 0 ? "all_well" : faults.size === 1 ? "to_mend_one" : "to_mend";
+    document.getElementById("count").textContent = this.isJson ? text(`movements.${words}`, { count: faults.size }) : "";
+    document.getElementById("first").hidden = faults.size === 0;
+    // What has no field of its own stands here, so that nothing is told unseen.
+    const loose = [...this.told].filter(([pointer]) => this.elementAt(pointer) === null).map(([, why]) => why);
+    document.getElementById("whole-fault").textContent = loose.join("; ");
   }
 
   isTouched(pointer) {
@@ -119,6 +143,7 @@ function parsed(words) {
 function mark(place, faults, isShown) {
   const pointer = place.dataset.pointer;
   if (place.tagName === "DETAILS") {
+    if (pointer === undefined) return;
     const inside = [...faults.keys()].some((one) => (one === pointer || one.startsWith(`${pointer}/`)) && isShown(one));
     place.classList.toggle("to-mend", inside);
     return;
@@ -130,7 +155,9 @@ function mark(place, faults, isShown) {
   if (fault) fault.textContent = why;
   if (!place.classList.contains("field")) return;
   for (const control of findAll("input, select", place)) {
-    if (why) control.setAttribute("aria-invalid", "true");
+    const isOff = control.classList.contains("off-by");
+    const isWrong = why && (names.length === 1 || faults.has(isOff ? `${pointer}/plus_minus` : pointer) || (!isOff && !faults.has(`${pointer}/plus_minus`)));
+    if (isWrong && !(control.closest(".worth") && control.tagName === "SELECT")) control.setAttribute("aria-invalid", "true");
     else control.removeAttribute("aria-invalid");
     if (why) control.setAttribute("aria-describedby", fault.id);
     else control.removeAttribute("aria-describedby");

@@ -1,36 +1,61 @@
 // What holds other fields: parts, lists, rows of numbers, parts under names, and parts that may be stated in two ways.
 import { el, find } from "../dom.js";
 import { text } from "../texts.js";
-import { leaf } from "./leaves.js";
-import { pointerOf } from "./places.js";
-import { begun, chosenOf, fieldsOf, isGroup, itemOf, namedOf } from "./shapes.js";
+import { cellControl } from "./cells.js";
+import { combOf } from "./comb.js";
+import { leaf, wordsOf } from "./leaves.js";
+import { generalOf, pointerOf } from "./places.js";
+import { begun, chosenOf, fieldsOf, isFlat, isGroup, itemOf, namedOf } from "./shapes.js";
+import { drawnTable } from "./tables.js";
 
 const SUMMED = 4; // values of an item that its line shows
 const worded = (name, values) => text(`movements.${name}`, values);
-export const wordsOf = (name) => worded(`field_${name}`);
 
-// The fields of a part, single values before groups.
-export function fieldsIn(shape, path, desk) {
-  const drawn = fieldsOf(shape).map((field) => ({ ...field, words: wordsOf(field.name), path: [...path, field.name], desk }));
-  const ordered = path.length ? drawn : [...drawn.filter((one) => !isGroup(one.shape)), ...drawn.filter((one) => isGroup(one.shape))];
-  return ordered.map((one) => (isGroup(one.shape) ? group(one) : leaf(one)));
+// The whole document: its sections in the order in which a movement is measured, what is not stated at the end.
+export function sectionsIn(shape, desk) {
+  const named = new Map(told(shape, [], desk).map((one) => [one.name, one]));
+  const isAbsent = (one) => isGroup(one.shape) && !one.needed && desk.valueAt(one.path) === undefined;
+  const drawn = desk.data.sections.flatMap(({ title, names }) => {
+    const fields = names.map((name) => named.get(name)).filter((one) => !isAbsent(one));
+    if (title === null) return fields.map(drawnOne);
+    return [el("fieldset", { class: "section" }, el("legend", {}, title), el("div", { class: "fields" }, usualFirst(fields, desk)))];
+  });
+  const absent = [...named.values()].filter(isAbsent);
+  return absent.length ? [...drawn, el("div", { class: "absent" }, absent.map(drawnOne))] : drawn;
+}
+
+const told = (shape, path, desk) =>
+  fieldsOf(shape).map((field) => ({ ...field, words: wordsOf(field.name), path: [...path, field.name], desk }));
+const drawnOne = (one) => (isGroup(one.shape) ? group(one) : leaf(one));
+
+// The fields of a part: what is needed or stated, and behind one line what else may be stated.
+const fieldsIn = (shape, path, desk) => usualFirst(told(shape, path, desk), desk);
+
+function usualFirst(fields, desk) {
+  const isRare = (one) => !one.needed && desk.valueAt(one.path) === undefined && !desk.data.usual.includes(generalOf(one.path));
+  const rare = fields.filter(isRare);
+  const drawn = fields.filter((one) => !isRare(one)).map(drawnOne);
+  if (!rare.length) return drawn;
+  const names = rare.map((one) => one.words).join(", ");
+  return [...drawn, el("details", { class: "rare" }, el("summary", {}, worded("rare", { names })), el("div", { class: "fields" }, rare.map(drawnOne)))];
 }
 
 export function group(asked) {
   const { words, shape, path, needed, desk } = asked;
-  const holder = el("div", { class: "group", "data-pointer": pointerOf(path) });
+  const holder = el("div", { class: `group of-${shape.kind}`, "data-pointer": pointerOf(path) });
   const redraw = () => holder.replaceChildren(...content());
   const content = () => {
     const value = desk.valueAt(path);
-    if (!needed && (value === undefined || value === null) && shape.kind !== "list") {
-      return [el("button", { type: "button", class: "plain", onclick: () => restate(begun(shape)) }, worded("state", { name: words }))];
+    if (!needed && (value === undefined || value === null)) {
+      const first = shape.kind === "list" ? [begun(itemOf(shape))] : begun(shape);
+      return [el("button", { type: "button", class: "plain", onclick: () => restate(first) }, worded("state", { name: words })), el("p", { class: "fault" })];
     }
     const draw = { fields: drawnFields, list: drawnList, row: drawnRow, named: drawnNamed, either: drawnEither }[shape.kind];
-    return [el("fieldset", {}, el("legend", {}, words), el("p", { class: "fault" }), draw(asked, redraw), leaveOut())];
+    return [el("fieldset", {}, el("legend", {}, words), el("p", { class: "fault" }), [draw(asked, redraw)].flat(), leaveOut())];
   };
   const leaveOut = () => {
     if (needed || desk.valueAt(path) === undefined) return null;
-    return el("button", { type: "button", class: "plain", onclick: () => restate(undefined) }, worded("leave_out", { name: words }));
+    return el("button", { type: "button", class: "plain leave", onclick: () => restate(undefined) }, worded("leave_out", { name: words }));
   };
   const restate = (value) => {
     desk.change(path, value);
@@ -44,13 +69,19 @@ export function group(asked) {
 const drawnFields = ({ shape, path, desk }) => el("div", { class: "fields" }, fieldsIn(shape, path, desk));
 
 function drawnRow({ words, shape, path, desk }) {
-  const drawn = shape.schema.prefixItems.map((_, place) =>
-    leaf({ name: "", words: worded("item", { name: words, number: place + 1 }), shape: itemOf(shape, place), path: [...path, place], needed: true, desk }),
-  );
-  return el("div", { class: "fields" }, drawn);
+  const cells = shape.schema.prefixItems.map((_, place) => {
+    const here = [...path, place];
+    const id = `at${pointerOf(here)}`;
+    const label = worded("item", { name: words, number: place + 1 });
+    const control = cellControl({ id, shape: itemOf(shape, place), path: here, desk, label });
+    return el("div", { class: "field", "data-pointer": pointerOf(here) }, control, el("p", { class: "fault", id: `${id}-fault` }));
+  });
+  return el("div", { class: "in-a-row" }, cells);
 }
 
-function drawnList({ words, shape, path, desk }, redraw) {
+function drawnList(asked, redraw) {
+  const { words, shape, path, desk } = asked;
+  if (isFlat(itemOf(shape))) return [pointerOf(path) === "/teeth" ? combOf(desk, path) : null, drawnTable(asked, redraw)];
   const held = desk.valueAt(path);
   const values = Array.isArray(held) ? held : [];
   const add = () => {
@@ -81,7 +112,11 @@ function drawnList({ words, shape, path, desk }, redraw) {
 }
 
 function drawnNamed({ words, shape, path, desk }, redraw) {
-  const entry = el("input", { type: "text", autocomplete: "off", "aria-label": worded("map_name", { name: words }) });
+  const names = shape.schema.propertyNames?.enum;
+  const label = worded("map_name", { name: words });
+  const entry = names
+    ? el("select", { "aria-label": label }, names.filter((name) => !(name in (desk.valueAt(path) ?? {}))).map((name) => el("option", {}, name)))
+    : el("input", { type: "text", autocomplete: "off", "aria-label": label });
   const add = () => {
     if (!entry.value.trim() || entry.value.trim() in (desk.valueAt(path) ?? {})) return entry.focus();
     const here = [...path, entry.value.trim()];
@@ -135,7 +170,7 @@ function drawnEither({ name, words, shape, path, needed, desk }, redraw) {
     "div",
     {},
     el("label", { class: "either" }, worded("written_as", { name: words }), el("select", { onchange: choose }, options)),
-    draw({ name, words, shape: chosen, path, needed, desk }, redraw),
+    [draw({ name, words, shape: chosen, path, needed, desk }, redraw)].flat(),
   );
 }
 

@@ -4,14 +4,16 @@ import { text } from "../texts.js";
 import { generalOf, pointerOf } from "./places.js";
 
 const BASES = ["measured", "calculated", "assumed"];
+const LONG = 28; // characters that a narrow field shows at once
 const NUMBER = /^-?(0|[1-9]\d*)(\.\d+)?([eE][+-]?\d+)?$/;
 const worded = (name, values) => text(`movements.${name}`, values);
+export const wordsOf = (name) => worded(`field_${name}`);
 
 // What a person typed into a number's field: a number where it is one, else the text itself, which is then a fault.
 export const typed = (words) => (NUMBER.test(words.trim().replace(",", ".")) ? Number(words.trim().replace(",", ".")) : words);
 
 const isWorth = (value) => value !== null && typeof value === "object" && "value" in value;
-const shown = (value) => (value === undefined || value === null ? "" : typeof value === "object" ? JSON.stringify(value) : String(value));
+export const shown = (value) => (value === undefined || value === null ? "" : typeof value === "object" ? JSON.stringify(value) : String(value));
 
 // A field: its label, its controls, a way to how it is measured, and room for its fault.
 export function leaf({ name, words, shape, path, needed, desk }) {
@@ -22,20 +24,26 @@ export function leaf({ name, words, shape, path, needed, desk }) {
   const fault = el("p", { class: "fault", id: `${id}-fault` });
   return el(
     "div",
-    { class: "field", "data-pointer": pointerOf(path) },
-    el("label", { for: id }, words, unit ? el("span", { class: "unit" }, ` ${unit}`) : null, note(shape, needed)),
+    { class: isLong(shape, desk.valueAt(path)) ? "field long" : "field", "data-pointer": pointerOf(path) },
+    el(
+      "span",
+      { class: "naming" },
+      el("label", { for: id }, words, unit ? el("span", { class: "unit" }, ` ${unit}`) : null, desk.valueAt(path) === undefined ? note(shape, needed) : null),
+      section ? el("a", { class: "how", href: `/measuring#${section}`, target: "_blank", "aria-label": worded("how_of", { name: words }) }, worded("how")) : null,
+    ),
     make({ id, words, shape, path, desk, needed }),
-    section ? el("a", { class: "how", href: `/measuring#${section}`, target: "_blank", "aria-label": worded("how_of", { name: words }) }, worded("how")) : null,
     fault,
   );
 }
+
+const isLong = (shape, value) => shape.kind === "text" && String(value ?? "").length > LONG;
 
 function note(shape, needed) {
   if (needed || shape.kind === "fixed") return null;
   const usual = shape.byDefault;
   const value = typeof usual === "boolean" ? worded(usual ? "yes" : "no") : usual;
-  const words = usual === undefined || usual === null ? worded("optional") : worded("by_default", { value });
-  return el("span", { class: "hint" }, words);
+  if (usual === undefined || usual === null || typeof usual === "object") return null;
+  return el("span", { class: "hint" }, worded("by_default", { value }));
 }
 
 function sectionOf(measured, path) {
@@ -58,7 +66,7 @@ function plainControl({ id, shape, path, desk }) {
   });
 }
 
-function choiceControl({ id, shape, path, desk }) {
+export function choiceControl({ id, shape, path, desk }) {
   const values = shape.kind === "yes-no" ? [true, false] : shape.schema.enum;
   const now = desk.valueAt(path);
   const strange = now !== undefined && now !== null && !values.includes(now) ? [now] : [];

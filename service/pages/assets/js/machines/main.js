@@ -3,6 +3,7 @@ import { ask } from "../asking.js";
 import { el, find, pageData, say } from "../dom.js";
 import { text } from "../texts.js";
 import { Desk } from "./desk.js";
+import { checkAfterPauses } from "./rules_there.js";
 import { save } from "./saving.js";
 import { written } from "./writing.js";
 
@@ -25,13 +26,20 @@ async function fromFile(desk, file) {
   }
 }
 
+function toFirst(desk) {
+  desk.showsAll = true;
+  desk.reveal(desk.faults().keys().next().value);
+}
+
 async function start() {
   const { value: schema } = await ask("GET", data.schema_at);
   const desk = new Desk({ data, schema, form, area: find("#json-text") });
   desk.load(data.id === null ? `${written(JSON.parse(data.text))}\n` : data.text);
   desk.isChanged = false;
+  checkAfterPauses(desk);
   form.addEventListener("submit", (event) => event.preventDefault());
   find("#save").addEventListener("click", () => save(desk));
+  find("#first").addEventListener("click", () => toFirst(desk));
   find("#to-file").addEventListener("click", () => toFile(desk));
   find("#json-file").addEventListener("change", ({ target }) => fromFile(desk, target.files[0]));
   addEventListener("beforeunload", (event) => desk.isChanged && event.preventDefault());

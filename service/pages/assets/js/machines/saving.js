@@ -5,7 +5,6 @@ import { text } from "../texts.js";
 import { faultList } from "./desk.js";
 
 const MOVED = 412; // RFC 9110 section 15.5.13: what was expected to be in force is not
-const ID = /^[a-z][a-z0-9-]{0,63}$/;
 const worded = (name, values) => text(`movements.${name}`, values);
 
 export async function save(desk) {
@@ -13,8 +12,13 @@ export async function save(desk) {
   desk.told.clear();
   desk.show();
   if (!desk.isJson) return desk.area.focus();
+  const faults = desk.ownFaults();
+  if (faults.size) {
+    answer(faultList(desk, worded("mend_first"), faults), false);
+    say(worded("mend_first"));
+    return desk.reveal(faults.keys().next().value);
+  }
   const { id } = desk.value;
-  if (typeof id !== "string" || !ID.test(id)) return answer(faultList(desk, worded("mend_first"), desk.faults()));
   answer(el("p", { class: "quiet" }, worded("saving")), false);
   const { data } = desk;
   const expected = data.tag === null ? { "If-None-Match": "*" } : { "If-Match": data.tag };
@@ -47,9 +51,10 @@ function tell(desk, told, id) {
   if (told.status === MOVED) return answer(desk.data.tag === null ? taken(desk, id) : moved(desk));
   const faults = told.invalid_params ?? [];
   if (!faults.length) return answer(el("p", { class: "problem-detail" }, worded("lost_connection", { detail: told.detail ?? told.title })));
-  for (const { pointer, detail } of faults) desk.told.set(pointer, detail);
-  desk.show();
-  return answer(faultList(desk, worded("refused"), new Map(desk.told)));
+  desk.take(faults);
+  answer(faultList(desk, worded("refused"), desk.told), false);
+  say(worded("refused"));
+  return desk.reveal(faults[0].pointer);
 }
 
 function taken(desk, id) {

@@ -22,16 +22,17 @@ function kindOf(schema) {
   return { string: "text", integer: "whole", number: "number", boolean: "yes-no" }[schema.type];
 }
 
-// { kind, schema, root, byDefault, takesNull, takesWorth?, choices? }; kind is one of fixed, choice, fields, named, row,
+// { kind, schema, root, byDefault, takesNull, takesWorth?, worth?, choices? }; kind is one of fixed, choice, fields, named, row,
 // list, text, whole, number, yes-no, either.
 export function shapeOf(schema, root) {
   const outer = resolved(schema, root);
   const { choices, takesNull } = choicesOf(outer, root);
   const told = { root, byDefault: schema.default ?? outer.default, takesNull };
-  const takesWorth = choices.some(isStated);
+  const stated = choices.find(isStated);
+  const takesWorth = stated !== undefined;
   const plain = choices.filter((one) => !isStated(one));
   if (plain.length > 1) return { ...told, kind: "either", choices: plain.map((one) => shapeOf(one, root)) };
-  return { ...told, kind: kindOf(plain[0]), schema: plain[0], takesWorth };
+  return { ...told, kind: kindOf(plain[0]), schema: plain[0], takesWorth, worth: stated?.properties };
 }
 
 export const fieldsOf = (shape) =>
@@ -67,5 +68,8 @@ export function begun(shape) {
   if (shape.kind === "either") return begun(shape.choices[0]);
   return "";
 }
+
+// Whether a part holds single values alone, so that a list of such parts is a table.
+export const isFlat = (shape) => shape.kind === "fields" && fieldsOf(shape).every((field) => !isGroup(field.shape));
 
 export const isGroup = (shape) => ["fields", "named", "row", "list", "either"].includes(shape.kind);
