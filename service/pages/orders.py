@@ -19,6 +19,7 @@ from service.pages.disc import disc_page
 from service.pages.disc_told import cautions_for
 from service.pages.orders_discs import OrderDiscQuery, cutter_of, disc_of_plan, layouts_of, settings_text
 from service.pages.orders_files import discs_told, files_told
+from service.pages.orders_plans import plans_told
 from service.pages.orders_told import (
     decisions_of,
     event_told,
@@ -26,7 +27,6 @@ from service.pages.orders_told import (
     listed,
     name_of,
     next_of,
-    plan_told,
     state_words,
 )
 from service.pages.page_views import gives_page
@@ -122,7 +122,7 @@ def _order_page(parts: Parts, asker: Asker, order_id: str, asked: Request) -> Re
         facts=facts_of(order),
         discs=discs_told(order, told, layouts_of(parts, plan)),
         files=files_told(order, told),
-        plans=[plan_told(one, order) for one in plans],
+        plans=plans_told(parts, order, plans, events),
         events=[event_told(event) for event in events],
         cautions=() if cutter is None else cautions_for(cutter.kind),
         settings=settings_text(parts, plan),
