@@ -63,6 +63,7 @@ TABLE: dict[str, Access] = {
     "GET /orders": READ,
     "GET /orders/<order_id>": READ,
     "GET /orders/<order_id>/discs/<int:disc>": READ,
+    "GET /orders/<order_id>/discs/<int:disc>/work-sheet/<int:number>.png": READ,
     "GET /proof/<text>": COUNTED,
     "GET /sign-in/<secret>": COUNTED,
     "POST /sign-in": COUNTED,

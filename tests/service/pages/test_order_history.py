@@ -196,7 +196,7 @@ def test_the_files_tell_who_wants_them_and_the_cautions_stand_with_what_is_cut_f
     files = part(order_seen(shop, order_id), "files")
 
     rows = {row.one("th").text: row.text for row in files.one("tbody").all("tr")}
-    assert "The customer, and whoever arranges: to hear it made when asked for" in rows["hearing.wav"]
+    assert "The customer, and whoever arranges: to hear it made anew" in rows["hearing.wav"]
     assert "Whoever arranges, in a program of their own" in rows["hearing.mid"]
     assert "Before you cut: Laser, Fume, Zinc, " in files.one("p", class_="caution").text
     assert not before.all("p", class_="caution")
