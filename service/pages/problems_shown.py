@@ -10,6 +10,7 @@ from service.api.proofs import PAGE as PROOFS
 from service.pages.rendering import page
 
 API = "/v1/"
+SIGN_IN = "/sign-in"
 UNAUTHORIZED = 401
 
 
@@ -20,7 +21,8 @@ def show_problems(app: Flask) -> None:
     def show(response: Response) -> Response:
         if response.mimetype != PROBLEM_MEDIA_TYPE or request.path.startswith(API):
             return response
-        if request.method != "GET" or not prefers_html(request):
+        is_sign_in = request.path == SIGN_IN  # the one form that a browser sends by itself
+        if not (request.method == "GET" or is_sign_in) or not prefers_html(request):
             response.vary.add("Accept")
             return response
         problem = json.loads(response.get_data())
@@ -31,7 +33,7 @@ def show_problems(app: Flask) -> None:
             template,
             status=response.status_code,
             problem=problem,
-            back=request.path + (f"?{query}" if query else ""),
+            back=request.form.get("back", "/") if is_sign_in else request.path + (f"?{query}" if query else ""),
         )
         for name in ("Retry-After", "WWW-Authenticate", "RateLimit", "RateLimit-Policy"):
             if name in response.headers:
@@ -44,4 +46,5 @@ def _template_for(path: str, status: int) -> str:
     """A customer with a proof link gets no way into the shop, whatever goes wrong."""
     if path == PROOFS or path.startswith(f"{PROOFS}/"):
         return "proof_refused.html"
-    return "sign_in.html" if status == UNAUTHORIZED else "problem.html"
+    is_sign_in = path == SIGN_IN or path.startswith(f"{SIGN_IN}/")
+    return "sign_in.html" if status == UNAUTHORIZED or is_sign_in else "problem.html"

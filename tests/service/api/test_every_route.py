@@ -142,7 +142,10 @@ BODIES: dict[str, dict[str, Any]] = {
     "PATCH /v1/hooks/<hook_id>": {"for_all_orders": True},
 }
 # Parts of a path that name what is the same for all who may ask, or opens something by itself.
-OF_NOBODY = {"asked_digest", "name", "secret", "text", "document_id", "fingerprint", "file_name", "revision", "disc"}
+OF_NOBODY = {
+    *("asked_digest", "name", "secret", "text", "document_id", "fingerprint", "file_name"),
+    *("revision", "disc", "number"),
+}
 # Those that name what belongs to an owner, each with an id of its form that was never made.
 OWNED = {
     "key_id": "key_" + 32 * "0",

@@ -9,6 +9,7 @@ import pypdf
 import pytest
 from PIL import Image
 
+from service.pages import orders_sheets
 from service.pages.orders_sheets import PIXELS_PER_POINT, picture_of
 from service.parts import Parts
 from tests.service.api.test_orders import NO_ROOM, Shop
@@ -46,9 +47,10 @@ def test_every_page_of_the_work_sheet_is_shown_and_is_the_one_of_the_file(shop: 
     assert sheet.all("img")[0].attributes["alt"].startswith(words)
 
 
-def test_a_picture_that_is_known_is_not_made_again(shop: Shop) -> None:
+def test_a_picture_that_is_known_is_not_made_again(shop: Shop, monkeypatch: pytest.MonkeyPatch) -> None:
     address = f"/orders/{shop.ready()}/discs/1/work-sheet/1.png"
     first = shop.http.get(address, headers=shop.shop)
+    monkeypatch.setattr(orders_sheets, "picture_of", lambda *_: pytest.fail("it was made again"))
 
     again = shop.http.get(address, headers={**shop.shop, "If-None-Match": first.headers["ETag"]})
 
@@ -102,4 +104,4 @@ def test_the_page_of_an_order_s_disc_shows_its_work_sheet_and_says_where_it_is_r
 
 def file_of(shop: Shop, order_id: str, revision: int) -> bytes:
     address = f"/v1/orders/{order_id}/plans/{revision}/files/1/work-sheet.pdf"
-    return shop.http.get(address, headers=shop.shop).data
+    return bytes(shop.http.get(address, headers=shop.shop).data)
