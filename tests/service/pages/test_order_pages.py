@@ -252,7 +252,7 @@ def test_a_plan_that_is_superseded_is_marked_and_nothing_of_it_is_called_fit_to_
         f"/orders/{order_id}/discs/1?revision=1",
     ]
     old = seen(shop, f"/orders/{order_id}/discs/1?revision=1")
-    assert "Plan 1 is superseded. Nothing of it may be cut any more." in old.text
+    assert "Order W-1001: plan 1 is superseded. Nothing of it may be cut any more." in old.text
     assert not [link for link in old.all("a") if link.attributes["href"].endswith(CUTTING_FILES)]
 
 
