@@ -1,5 +1,6 @@
 """/sign-in and /sign-out: how a browser is let in, and leaves."""
 
+import re
 from collections.abc import Callable
 from datetime import datetime, timedelta
 
@@ -17,6 +18,8 @@ from service.moments import utc_now
 from service.parts import Parts
 
 FIRST_PAGE = "/"
+# A path of this service: two slashes, or a backslash, which browsers take for one, would begin another host.
+OWN_PAGE = re.compile(r"/(?!/)[\x21-\x5b\x5d-\x7e]{0,2000}")
 
 
 def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blueprint:
@@ -30,8 +33,8 @@ def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blu
     store, public_url = parts.store, parts.settings.places.public_url
     lasts = timedelta(hours=parts.settings.access.session_hours)
 
-    def first_page(signed_in: SignedIn) -> Response:
-        response = _led_on()
+    def first_page(signed_in: SignedIn, to: str = FIRST_PAGE) -> Response:
+        response = _led_on(to)
         set_cookie(response, request, signed_in, public_url)
         return response
 
@@ -57,7 +60,7 @@ def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blu
         key = find_key(store, _key_posted(request, public_url))
         if key is None:
             raise ProblemError(name="sign-in-refused", detail="the field key holds no key that is in force")
-        return first_page(sign_in_as(store, key, clock(), lasts))
+        return first_page(sign_in_as(store, key, clock(), lasts), _page_wanted(request))
 
     @routes.post("/sign-out")
     @describes(keys.SIGN_OUT)
@@ -93,9 +96,15 @@ def _key_posted(asked: Request, public_url: str | None) -> str:
     return asked.form.get("key", "").strip()
 
 
-def _led_on() -> Response:
-    """An answer that leads to the first page by GET (RFC 9110 section 15.4.4) and tells nobody where from."""
-    response = Response(status=303, headers={"Location": FIRST_PAGE})
+def _page_wanted(asked: Request) -> str:
+    """The page of this service that the field `back` of a form names; the first page where it names none."""
+    back = asked.form.get("back", "")
+    return back if OWN_PAGE.fullmatch(back) else FIRST_PAGE
+
+
+def _led_on(to: str = FIRST_PAGE) -> Response:
+    """An answer that leads to a page by GET (RFC 9110 section 15.4.4) and tells nobody where from."""
+    response = Response(status=303, headers={"Location": to})
     response.headers["Referrer-Policy"] = "no-referrer"
     response.headers["Cache-Control"] = "no-store"
     return response

@@ -10,6 +10,7 @@ from service.api.asking import needs
 from service.api.cursors import Cursors
 from service.api.models.orders import MOST_REVISION, OrdersQuery
 from service.api.order_answers import order_told
+from service.api.order_files import file_of
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
 from service.orders.finding import Sought, events_of, find_order, list_orders
@@ -19,6 +20,8 @@ from service.pages.disc import disc_page
 from service.pages.disc_told import cautions_for
 from service.pages.orders_discs import OrderDiscQuery, cutter_of, disc_of_plan, layouts_of, settings_text
 from service.pages.orders_files import discs_told, files_told
+from service.pages.orders_plans import plans_told
+from service.pages.orders_sheets import SHEET, sheet_picture, sheet_told
 from service.pages.orders_told import (
     decisions_of,
     event_told,
@@ -26,7 +29,6 @@ from service.pages.orders_told import (
     listed,
     name_of,
     next_of,
-    plan_told,
     state_words,
 )
 from service.pages.page_views import gives_page
@@ -66,6 +68,13 @@ def orders_routes(parts: Parts) -> Blueprint:
     @needs(Scope.READ)
     def show_disc(asker: Asker, order_id: str, disc: int) -> Response:
         return _disc_page(parts, asker, (order_id, disc), request)
+
+    @routes.get("/orders/<order_id>/discs/<int:disc>/work-sheet/<int:number>.png")
+    @gives_page
+    @needs(Scope.READ)
+    def show_work_sheet(asker: Asker, order_id: str, disc: int, number: int) -> Response:
+        _, plan = _plan_asked(parts, asker, order_id, request)
+        return sheet_picture(parts, file_of(plan, disc, SHEET), number, request)
 
     return routes
 
@@ -122,7 +131,10 @@ def _order_page(parts: Parts, asker: Asker, order_id: str, asked: Request) -> Re
         facts=facts_of(order),
         discs=discs_told(order, told, layouts_of(parts, plan)),
         files=files_told(order, told),
-        plans=[plan_told(one, order) for one in plans],
+        sheets=()
+        if plan is None
+        else [sheet_told(parts, order.id, plan, disc["number"]) for disc in plan.told["discs"]],
+        plans=plans_told(parts, order, plans, events),
         events=[event_told(event) for event in events],
         cautions=() if cutter is None else cautions_for(cutter.kind),
         settings=settings_text(parts, plan),
@@ -149,8 +161,13 @@ def _looked_up(
     return order, tuple(plan for plan in plans if plan is not None), events
 
 
-def _disc_page(parts: Parts, asker: Asker, which: tuple[str, int], asked: Request) -> Response:
-    order_id, disc = which
+def _plan_asked(parts: Parts, asker: Asker, order_id: str, asked: Request) -> tuple[OrderView, PlanView]:
+    """An order, and the plan of it that the query asks for.
+
+    Raises:
+        OrderUnknownError: There is no such order for the asker.
+        ProblemError: It has no such plan.
+    """
     query = read_arguments(asked, OrderDiscQuery)
     with parts.store.reading() as session:
         order = find_order(session, asker, order_id)
@@ -163,5 +180,18 @@ def _disc_page(parts: Parts, asker: Asker, which: tuple[str, int], asked: Reques
             if query.revision is None
             else f"the order has no plan {query.revision}",
         )
-    beside = {"order": order, "plan": plan, "listed": listed(order), "state": state_words(order.state)}
+    return order, plan
+
+
+def _disc_page(parts: Parts, asker: Asker, which: tuple[str, int], asked: Request) -> Response:
+    order_id, disc = which
+    order, plan = _plan_asked(parts, asker, order_id, asked)
+    beside = {
+        "order": order,
+        "plan": plan,
+        "listed": listed(order),
+        "state": state_words(order.state),
+        "sheet": sheet_told(parts, order.id, plan, disc),
+        "may_revise": decisions_of(order, asker).replan and plan.revision == order.plan_revision,
+    }
     return disc_page(asked, disc_of_plan(parts, order.id, plan, disc), template="order_disc.html", beside=beside)

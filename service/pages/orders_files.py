@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from layout.file_names import FILES
+from service.api.order_answers import file_address
 from service.orders.states import State
 from service.orders.views import OrderView, PlanView
 from service.pages.disc_shown import Record
@@ -12,6 +13,7 @@ from service.pages.disc_told import FindingTold, findings_of
 from service.pages.texts import text_of
 
 MINUTE_S, HOUR_S = 60, 3600
+SOUNDS = ("hearing.wav", "hearing.mid")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -103,7 +105,14 @@ def files_told(order: OrderView, told: Mapping[str, Any]) -> FilesTold | None:
         may_be_cut=standing not in ("superseded", "cancelled"),
         kept_back=text_of("orders.file_after_release" if standing == "before" else "orders.file_not_to_cut"),
         by_disc=tuple(
-            (disc, tuple(_file(file, is_given=is_given) for file in files if file["disc"] == disc)) for disc in discs
+            (
+                disc,
+                (
+                    *(_file(file, is_given=is_given) for file in files if file["disc"] == disc),
+                    *(_sound(order.id, plan.revision, disc, name) for name in SOUNDS),
+                ),
+            )
+            for disc in discs
         ),
     )
 
@@ -125,6 +134,18 @@ def _file(file: Mapping[str, Any], *, is_given: bool) -> FileOfPlan:
         name=file["name"],
         address=file["href"] if is_given or not file["for_cutting"] else None,
         kilobytes=text_of("orders.file_size", kilobytes=f"{file['byte_count'] / 1000:.1f}"),
+        what=text_of(key),
+        who=text_of(f"{key}_who"),
+    )
+
+
+def _sound(order_id: str, revision: int, disc: int, name: str) -> FileOfPlan:
+    """How a disc sounds: made from the plan whenever it is asked for, so that it has no size of its own."""
+    key = f"orders.file_{name.replace('.', '_')}"
+    return FileOfPlan(
+        name=name,
+        address=file_address(order_id, revision, disc, name),
+        kilobytes=text_of("orders.file_size_made"),
         what=text_of(key),
         who=text_of(f"{key}_who"),
     )

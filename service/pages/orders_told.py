@@ -1,14 +1,14 @@
 """What the pages of orders say in words: states and what comes next, facts, plans, what happened."""
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from typing import Any
 
 from service.access.asker import Asker
 from service.access.scopes import Scope
-from service.orders.states import State
-from service.orders.views import EventView, OrderView, PlanView
+from service.orders.states import FINISHED, EventType, State
+from service.orders.views import EventView, OrderView
 from service.pages.disc_told import counted
 from service.pages.texts import text_of, texts
 
@@ -20,6 +20,9 @@ LOOKS = {
     State.FAILED: "bad",
     State.CANCELLED: "quiet",
 }
+
+# Told by a person's own name; who did all else is told by the title of their key.
+BY_PEOPLE = frozenset({EventType.RELEASED, EventType.ACCEPTED, EventType.DECLINED})
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -45,19 +48,6 @@ class Listed:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class PlanTold:
-    """A plan of the order: whether it is in force, and what was decided about it."""
-
-    revision: int
-    made: Moment
-    standing: str
-    is_superseded: bool
-    lost: str
-    lines: tuple[str, ...]
-    discs: tuple[int, ...]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
 class EventTold:
     """What happened: when, in words, by whom, and what was said with it."""
 
@@ -69,7 +59,7 @@ class EventTold:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Decisions:
-    """What the page offers to whom asks; `missing` names what a key with more scopes would be offered."""
+    """What the page offers to whom asks; `missing` says why something that might be looked for is not offered."""
 
     release: bool
     reason_wanted: bool
@@ -78,6 +68,8 @@ class Decisions:
     recall: bool
     link: bool
     report: bool
+    repeat: bool
+    erase: bool
     missing: tuple[str, ...]
 
 
@@ -132,20 +124,38 @@ def decisions_of(order: OrderView, asker: Asker) -> Decisions:
     waits = is_there and state in (State.READY, State.ATTENTION)
     orders, releases = Scope.ORDER in asker.scopes, Scope.RELEASE in asker.scopes
     is_released = is_there and state is State.RELEASED
-    needs_release = waits or is_released
+    may_be_planned = waits or is_released or state is State.FAILED
+    has_files = order.plan is not None and bool(order.plan.files)
     return Decisions(
         release=waits and releases,
         reason_wanted=state is State.ATTENTION,
-        replan=is_there and orders and bool(order.tune_digest) and (needs_release or state is State.FAILED),
+        replan=is_there and orders and bool(order.tune_digest) and may_be_planned,
         cancel=is_there and orders and (state is not State.CANCELLED) and not is_released,
         recall=is_released and orders and asker.sees_all_owners,
         link=waits and orders,
         report=is_released and releases,
-        missing=(
-            *((text_of("orders.missing_release"),) if needs_release and not releases else ()),
-            *((text_of("orders.missing_order"),) if is_there and not orders and state is not State.CANCELLED else ()),
-        ),
+        repeat=is_released and orders and has_files and (asker.is_test or not order.is_test),
+        erase=is_there and orders and state in FINISHED,
+        missing=tuple(text_of(f"orders.missing_{name}") for name in _missing(order, asker)),
     )
+
+
+def _missing(order: OrderView, asker: Asker) -> Iterator[str]:
+    """The names of the texts that say why something is not offered."""
+    if order.erased_at is not None:
+        return
+    state, orders = State(order.state), Scope.ORDER in asker.scopes
+    waits, is_released = state in (State.READY, State.ATTENTION), state is State.RELEASED
+    if (waits or is_released) and Scope.RELEASE not in asker.scopes:
+        yield "release"
+    if not orders and state is not State.CANCELLED:
+        yield "order"
+    if orders and is_released and not asker.sees_all_owners:
+        yield "recall"
+    if orders and not order.tune_digest and (waits or is_released or state is State.FAILED):
+        yield "tune"
+    if orders and is_released and order.plan is not None and not order.plan.files:
+        yield "files"
 
 
 def facts_of(order: OrderView) -> tuple[tuple[str, str], ...]:
@@ -170,40 +180,12 @@ def facts_of(order: OrderView) -> tuple[tuple[str, str], ...]:
     return tuple((text_of(f"orders.fact_{name}"), value) for name, value in facts.items() if value)
 
 
-def plan_told(plan: PlanView, order: OrderView) -> PlanTold:
-    """A plan in words.
-
-    Args:
-        plan: Of the order's plans.
-        order: The order.
-    """
-    is_superseded = plan.superseded_at is not None
-    in_force = plan.revision == order.plan_revision
-    standing = "superseded" if is_superseded else "in_force" if in_force else "replaced"
-    lines = []
-    if plan.released_at is not None:
-        released = {"by": plan.released_by or text_of("orders.by_nobody"), "at": moment(plan.released_at).for_people}
-        lines.append(text_of("orders.plan_released", **released))
-    if plan.release_reason:
-        lines.append(text_of("orders.plan_reason", reason=plan.release_reason))
-    if plan.superseded_at is not None:
-        lines.append(text_of("orders.plan_superseded_at", at=moment(plan.superseded_at).for_people))
-    return PlanTold(
-        revision=plan.revision,
-        made=moment(plan.made_at),
-        standing=text_of(f"orders.plan_{standing}"),
-        is_superseded=is_superseded,
-        lost=percent(plan.lost_share),
-        lines=tuple(lines),
-        discs=tuple(disc["number"] for disc in plan.told["discs"]) if plan.files else (),
-    )
-
-
 def event_told(event: EventView) -> EventTold:
     """An event in words: one of a type that has none is told by its type."""
     key = f"orders.event_{event.type.removeprefix('order.')}"
     what = text_of(key) if key in texts() else event.type
-    by = text_of("orders.event_by", by=event.by) if event.by else ""
+    said_by = "orders.event_by" if event.type in BY_PEOPLE else "orders.event_by_key"
+    by = text_of(said_by, by=event.by) if event.by else ""
     return EventTold(seq=event.seq, at=moment(event.at), what=what + by, lines=tuple(_event_lines(event.data)))
 
 

@@ -21,19 +21,19 @@ def show_problems(app: Flask) -> None:
     def show(response: Response) -> Response:
         if response.mimetype != PROBLEM_MEDIA_TYPE or request.path.startswith(API):
             return response
-        is_form = request.method == "POST" and request.path == SIGN_IN  # the one form that a browser sends by itself
-        if not (request.method == "GET" or is_form) or not prefers_html(request):
+        is_sign_in = request.path == SIGN_IN  # the one form that a browser sends by itself
+        if not (request.method == "GET" or is_sign_in) or not prefers_html(request):
             response.vary.add("Accept")
             return response
         problem = json.loads(response.get_data())
-        template = "sign_in.html" if is_form else _template_for(request.path, response.status_code)
+        template = _template_for(request.path, response.status_code)
         query = request.query_string.decode("latin-1")
         shown = page(
             request,
             template,
             status=response.status_code,
             problem=problem,
-            back=request.path + (f"?{query}" if query else ""),
+            back=request.form.get("back", "/") if is_sign_in else request.path + (f"?{query}" if query else ""),
         )
         for name in ("Retry-After", "WWW-Authenticate", "RateLimit", "RateLimit-Policy"):
             if name in response.headers:
@@ -46,4 +46,5 @@ def _template_for(path: str, status: int) -> str:
     """A customer with a proof link gets no way into the shop, whatever goes wrong."""
     if path == PROOFS or path.startswith(f"{PROOFS}/"):
         return "proof_refused.html"
-    return "sign_in.html" if status == UNAUTHORIZED else "problem.html"
+    is_sign_in = path == SIGN_IN or path.startswith(f"{SIGN_IN}/")
+    return "sign_in.html" if status == UNAUTHORIZED or is_sign_in else "problem.html"

@@ -72,4 +72,6 @@ PAGES = (
     ShownPage(name="problem", route="", path="/nowhere", status=404),
 )
 # Routes of pages that are no page of their own: what pages load.
-NO_PAGES = frozenset({"/assets/<asked_digest>/<path:name>"})
+NO_PAGES = frozenset(
+    {"/assets/<asked_digest>/<path:name>", "/orders/<order_id>/discs/<int:disc>/work-sheet/<int:number>.png"}
+)

@@ -131,7 +131,7 @@ def test_a_page_in_another_state_keeps_the_rules_of_access_and_fits_a_phone(
 def test_a_key_that_is_refused_is_told_so_and_can_be_given_again(window: Window) -> None:
     window.watch.bears += BORNE
     page = sign_in_refused(window)
-    assert page.inner_text("#key-fault").startswith("No key that is in force was given.")
+    assert page.inner_text("#key-fault").startswith("This is no key that is in force.")
     assert focused(page) == "key"
     assert page.get_attribute("#key", "aria-invalid") == "true"
 

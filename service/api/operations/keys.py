@@ -1,5 +1,8 @@
 """Keys, and how browsers are signed in as one."""
 
+from collections.abc import Mapping
+from typing import Any
+
 from service.api.describing import Answer, Body, Example, HeaderField, Operation
 from service.api.models.keys import KeyAnswer, KeyBody, KeysAnswer, KeysQuery, NewKeyAnswer, OwnKeyAnswer
 from service.api.operations.common import CSRF_TOKEN, DONE, LOCATION, NEXT, told
@@ -58,11 +61,15 @@ REVOKE = Operation(
     problems=("key-unknown",),
     examples=(Example(status=204, given="a key"),),
 )
+SIGN_IN_FIELDS: Mapping[str, Mapping[str, Any]] = {
+    "key": {"type": "string", "examples": ["dw_…"]},
+    "back": {"type": "string", "description": "the page of this service to go to then; the first one if left out"},
+}
 SIGN_IN = Operation(
     id="sign_in",
     tag=SIGN_IN_TAG,
     summary="Sign a browser in as a key",
-    bodies=(Body(media_type=FORM_OF_FIELDS, fields={"key": {"type": "string", "examples": ["dw_…"]}}),),
+    bodies=(Body(media_type=FORM_OF_FIELDS, fields=SIGN_IN_FIELDS),),
     answers=(LED_ON,),
     problems=("sign-in-refused", "write-not-vouched"),
     examples=(Example(status=303, given="a key", media_type=FORM_OF_FIELDS, body={"key": "dw_…"}),),

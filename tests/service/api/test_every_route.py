@@ -63,6 +63,7 @@ TABLE: dict[str, Access] = {
     "GET /orders": READ,
     "GET /orders/<order_id>": READ,
     "GET /orders/<order_id>/discs/<int:disc>": READ,
+    "GET /orders/<order_id>/discs/<int:disc>/work-sheet/<int:number>.png": READ,
     "GET /proof/<text>": COUNTED,
     "GET /sign-in/<secret>": COUNTED,
     "POST /sign-in": COUNTED,
@@ -144,7 +145,10 @@ BODIES: dict[str, dict[str, Any]] = {
     "PATCH /v1/hooks/<hook_id>": {"for_all_orders": True},
 }
 # Parts of a path that name what is the same for all who may ask, or opens something by itself.
-OF_NOBODY = {"asked_digest", "name", "secret", "text", "document_id", "fingerprint", "file_name", "revision", "disc"}
+OF_NOBODY = {
+    *("asked_digest", "name", "secret", "text", "document_id", "fingerprint", "file_name"),
+    *("revision", "disc", "number"),
+}
 # Those that name what belongs to an owner, each with an id of its form that was never made.
 OWNED = {
     "key_id": "key_" + 32 * "0",

@@ -25,7 +25,7 @@ from tests.service.pages.test_own_routes import HTML
 from tests.service.shop import planned, taken
 
 SCRIPTS = {name: asset.content.decode() for name, asset in assets().items() if name.startswith("js/orders/")}
-FORMS = ("release", "proof-links", "reports", "replan", "cancel")
+FORMS = ("release", "proof-links", "reports", "replan", "repeat", "cancel", "erase")
 
 
 @pytest.fixture
@@ -165,7 +165,7 @@ def test_an_order_that_waits_says_so_and_may_only_be_cancelled(shop: Shop) -> No
     assert [forms(page) for page in (waits, held)] == [["cancel"], ["cancel"]]
     assert [data_of(page)["unplanned"] for page in (waits, held)] == [True, True]
     assert "There is none yet." in part(waits, "plans").text
-    assert part(waits, "events").text.endswith("The order came in, by a key")
+    assert part(waits, "events").text.endswith("The order came in, with the key “a key”")
 
 
 def test_a_ready_order_shows_previews_and_keeps_what_is_for_cutting_back(shop: Shop) -> None:
@@ -174,7 +174,8 @@ def test_a_ready_order_shows_previews_and_keeps_what_is_for_cutting_back(shop: S
     page = order_seen(shop, order_id)
 
     links = file_links(page)
-    assert list(links) == ["record.dxf", "disc.svg", "work-sheet.pdf", "layout.json", "report.json", "making.json"]
+    previews = ["record.dxf", "disc.svg", "work-sheet.pdf", "layout.json", "report.json", "making.json"]
+    assert list(links) == [*previews, "hearing.wav", "hearing.mid"]
     assert {shop.http.get(link, headers=shop.shop).status_code for link in links.values()} == {200}
     held_back = [row.text for row in part(page, "files").all("tr") if "after release" in row.text]
     assert [row.split()[0] for row in held_back] == ["disc.dxf", "hits.csv"]
@@ -212,7 +213,7 @@ def test_a_release_says_which_plan_and_version_was_seen_and_gives_the_cutting_fi
     assert "Released by A. Maker" in part(page, "plans").text
     assert part(page, "events").text.startswith(page.one("ol", data_part="events").all("time")[0].text)
     assert "It was released, by A. Maker" in part(page, "events").text
-    assert forms(page) == ["reports", "replan", "cancel"]
+    assert forms(page) == ["reports", "replan", "repeat", "cancel", "erase"]
 
 
 def test_where_a_person_must_decide_the_findings_stand_on_the_page_and_a_reason_is_asked_for(shop: Shop) -> None:
@@ -247,7 +248,7 @@ def test_a_plan_that_is_superseded_is_marked_and_nothing_of_it_is_called_fit_to_
     assert page.one("li", class_="superseded").text.startswith("Plan 1 superseded: not to be cut any more")
     planned(shop.parts, order_id)
     page = order_seen(shop, order_id)
-    assert [plan.text.split(" Made")[0] for plan in page.one("ul", class_="plans").all("li")] == [
+    assert [heading.text for heading in part(page, "plans").all("h3")] == [
         "Plan 2 in force",
         "Plan 1 superseded: not to be cut any more",
     ]
@@ -256,7 +257,7 @@ def test_a_plan_that_is_superseded_is_marked_and_nothing_of_it_is_called_fit_to_
         f"/orders/{order_id}/discs/1?revision=1",
     ]
     old = seen(shop, f"/orders/{order_id}/discs/1?revision=1")
-    assert "Plan 1 is superseded. Nothing of it may be cut any more." in old.text
+    assert "Order W-1001: plan 1 is superseded. Nothing of it may be cut any more." in old.text
     assert not [link for link in old.all("a") if link.attributes["href"].endswith(CUTTING_FILES)]
 
 
@@ -273,7 +274,7 @@ def test_an_order_that_was_called_back_calls_nothing_fit_to_cut(shop: Shop) -> N
     assert "Good to cut" not in part(page, "discs").text
     assert not file_links(page).keys() & set(CUTTING_FILES)
     assert "Because: a wrong tune Its files were called back" in part(page, "events").text
-    assert forms(page) == []
+    assert forms(page) == ["erase"]
 
 
 def test_what_became_of_the_discs_stands_in_the_story(shop: Shop) -> None:
@@ -285,8 +286,8 @@ def test_what_became_of_the_discs_stands_in_the_story(shop: Shop) -> None:
     answer = asked(shop, f"/orders/{order_id}")
     story = part(page_read(answer.text), "events")
 
-    assert "Discs were cut, by a key Plan 1 “<b>clean</b>” 2 discs" in story.text
-    assert "A disc was measured, by a key Plan 1 1 disc tab_width_mm 1.19" in story.text
+    assert "Discs were cut, with the key “a key” Plan 1 “<b>clean</b>” 2 discs" in story.text
+    assert "A disc was measured, with the key “a key” Plan 1 1 disc tab_width_mm 1.19" in story.text
     assert not story.all("b")
     assert data_of(page_read(answer.text))["last"] == 6  # in, planned, ready, released, cut, measured
 
@@ -301,7 +302,9 @@ def test_a_key_is_offered_what_its_scopes_allow(shop: Shop) -> None:
     assert "sign in with a key that has the scope “release”" in reads.text
     assert "sign in with a key that has the scope “order”" in reads.text
     shop.decide(order_id, "release", shop.shop, by="A. Maker")
-    assert forms(order_seen(shop, order_id, shop.web)) == ["replan"]  # only the shop calls its files back
+    released = order_seen(shop, order_id, shop.web)
+    assert forms(released) == ["replan", "repeat", "erase"]
+    assert "only the shop can call it back and cancel it. Ask the shop." in part(released, "deciding").text
 
 
 @on_both_databases("a deleted order with what is left of its plans and events")

@@ -93,7 +93,7 @@ def test_a_key_that_is_refused_is_told_to_a_person_at_its_field_and_to_a_program
     told = client.post("/sign-in", data={"key": "dw_<b>"})
 
     assert (shown.status_code, shown.mimetype) == (403, "text/html")
-    assert 'id="key-fault">No key that is in force was given.' in shown.text
+    assert 'id="key-fault">This is no key that is in force.' in shown.text
     assert "dw_&lt;" not in shown.text  # no key goes back out
     assert (told.status_code, told.mimetype) == (403, "application/problem+json")
     assert client.post("/v1/orders", headers=HTML).mimetype == "application/problem+json"

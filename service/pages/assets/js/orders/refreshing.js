@@ -43,14 +43,20 @@ async function fetched(wire) {
   if (!answer.ok) return;
   const fresh = new DOMParser().parseFromString(await answer.text(), "text/html");
   const before = find("#state").textContent;
+  const last = lastOf(document);
   for (const part of parts()) replace(part, find(`[data-part="${part.dataset.part}"]`, fresh));
   find("#order-data").textContent = find("#order-data", fresh).textContent;
   wire();
   // A link that was made leads to what is decided about no more.
   if (find('form[data-do="proof-links"]') === null) find("#made-link").hidden = true;
   const now = find("#state").textContent;
+  const happened = lastOf(document);
   if (now !== before) say(text("orders.now", { state: now, next: find("#next").textContent }));
+  else if (happened !== last) say(text("orders.happened", { what: happened }));
 }
+
+// The last thing that happened, in the words of the story, the newest of which stands first.
+const lastOf = (page) => find("[data-part=events] li p", page)?.textContent ?? "";
 
 function replace(part, fresh) {
   const name = part.dataset.part;

@@ -17,14 +17,29 @@ export function nameFor(form, body) {
   return name;
 }
 
+// What each form asks of the API; a form that is not named here sends its fields to the address of its name.
+const ASKED = {
+  "proof-links": (_, address) => ["POST", `${address}/proof-links`, {}],
+  erase: (_, address) => ["DELETE", address, {}],
+  repeat: ({ dataset }, _, body) => {
+    const order = JSON.stringify({ ...body, repeat_of: dataset.order });
+    const form = new FormData();
+    form.append("order", new Blob([order], { type: "application/json" }));
+    return ["POST", "/v1/orders", { form }];
+  },
+};
+const ONCE_ANYWAY = new Set(["proof-links", "erase"]); // twice does no harm, and they take no Idempotency-Key
+
 async function send(form, address) {
-  const body = { ...bodyOf(form), ...(form.dataset.plan ? { plan: form.dataset.plan } : {}) };
-  const isLink = form.dataset.do === "proof-links";
-  const headers = isLink ? {} : { "Idempotency-Key": `"${nameFor(form, body)}"` };
-  if (form.dataset.version) headers["If-Match"] = `"${form.dataset.version}"`;
-  const answer = await ask("POST", `${address}/${form.dataset.do}`, { json: isLink ? undefined : body, headers });
+  const { do: what, plan, version } = form.dataset;
+  const body = { ...bodyOf(form), ...(plan ? { plan } : {}) };
+  const headers = ONCE_ANYWAY.has(what) ? {} : { "Idempotency-Key": `"${nameFor(form, body)}"` };
+  if (version) headers["If-Match"] = `"${version}"`;
+  const [method, to, brought] = ASKED[what]?.(form, address, body) ?? ["POST", `${address}/${what}`, { json: body }];
+  const { value } = await ask(method, to, { ...brought, headers });
   names.delete(form);
-  return isLink ? showLink(answer.value) : null;
+  if (what === "proof-links") showLink(value);
+  if (what === "repeat") location.assign(`/orders/${value.id}`);
 }
 
 // The page may have been made anew around the form meanwhile, or hold it no more.
