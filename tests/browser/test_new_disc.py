@@ -128,6 +128,8 @@ def test_while_it_is_under_way_the_stage_is_told_and_nothing_can_be_changed(wind
     assert page.get_attribute("#progress", "value") is None  # how far it is nobody knows
     assert page.evaluate("document.querySelector('#new-disc').inert")
     assert focused(page) == "stage"
+    below = page.evaluate("document.querySelector('#give-up').getBoundingClientRect().bottom - innerHeight")
+    assert below <= 0, "the button that gives up is out of sight"
     page.click("#give-up")
     assert not page.evaluate("document.querySelector('#new-disc').inert")
     assert page.evaluate("document.querySelector('#tune').files.length") == 1

@@ -16,7 +16,8 @@ export function begin(form) {
   elapsed.textContent = "";
   progress.value = 0;
   stage("new.sending");
-  find("#stage").focus();
+  find("#stage").focus({ preventScroll: true });
+  find("#under-way").scrollIntoView({ block: "center" });
   return {
     sent(share) {
       progress.value = share;
