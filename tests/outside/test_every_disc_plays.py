@@ -30,7 +30,7 @@ from tests.layout.write import reading
 from tests.layout.write.reading import read_dxf, read_svg, upside_down
 from tests.outside.gdal_drawing import area_of, layers_of, plucks_from_cut_geometry
 from tests.outside.pieces import PIECE_NAMES, public_domain_piece
-from tests.thorough import THOROUGH
+from tests.thorough import THOROUGH, tried
 
 MOVEMENTS = ("fernhollow-31", "mossbrook-67", "tarnlight-17")
 CUTTERS = ("fibre-laser", "turn-press")
@@ -213,7 +213,7 @@ def tune_of(notes: list[tuple[int, int, int]]) -> bytes:
 NOTES = st.lists(st.tuples(st.integers(0, 900), st.integers(36, 100), st.integers(1, 127)), min_size=1, max_size=60)
 
 
-@settings(max_examples=25, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=tried(25), deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(notes=NOTES, pair=st.sampled_from(PAIRS))
 def test_a_generated_piece_plays_every_pluck_at_its_moment(
     notes: list[tuple[int, int, int]], pair: tuple[str, str], tmp_path: Path
