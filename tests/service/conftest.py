@@ -165,6 +165,12 @@ def sqlite_first(because: str) -> pytest.MarkDecorator:
     return pytest.mark.sqlite_first(because)
 
 
+def pytest_configure(config: pytest.Config) -> None:
+    """Name the marks."""
+    config.addinivalue_line("markers", "each_case_on_both(because): every case of it is run on both databases")
+    config.addinivalue_line("markers", "sqlite_first(because): run on PostgreSQL by TESTS=thorough alone")
+
+
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
     """Leave to SQLite what says nothing of a database."""
     if THOROUGH:
