@@ -4,7 +4,9 @@ import logging
 
 from hypothesis import settings
 
-settings.register_profile("untimed", deadline=None)
+from tests.thorough import tried
+
+settings.register_profile("untimed", deadline=None, max_examples=tried(100))
 settings.load_profile("untimed")
 
 # ezdxf's remarks about damaged files quote their bytes, half letters among them, which no report can carry from

@@ -1,7 +1,8 @@
 """The proof of the main job: what is cut, read by GDAL, plays what layout.json says, on real pieces.
 
 For every shipped movement and cutter, on the demo tune, on public-domain pieces that a general music
-library ships, and on generated pieces.
+library ships, and on generated pieces. By default the demo tune is tried on every pair, and every piece on one of them,
+which they take in turn; with TESTS=thorough every piece on every pair.
 """
 
 import csv
@@ -29,6 +30,7 @@ from tests.layout.write import reading
 from tests.layout.write.reading import read_dxf, read_svg, upside_down
 from tests.outside.gdal_drawing import area_of, layers_of, plucks_from_cut_geometry
 from tests.outside.pieces import PIECE_NAMES, public_domain_piece
+from tests.thorough import THOROUGH, tried
 
 MOVEMENTS = ("fernhollow-31", "mossbrook-67", "tarnlight-17")
 CUTTERS = ("fibre-laser", "turn-press")
@@ -36,6 +38,7 @@ PAIRS = list(itertools.product(MOVEMENTS, CUTTERS))
 # The demo on every pair, and every other piece on one of them: reading a drawing entity by entity takes its time.
 AUDITED = [("demo", pair) for pair in PAIRS]
 AUDITED += [(name, PAIRS[place % len(PAIRS)]) for place, name in enumerate(PIECE_NAMES)]
+PLAYED = list(itertools.product(("demo", *PIECE_NAMES), PAIRS)) if THOROUGH else AUDITED
 FIT = '{"speed": {"mode": "fit", "least": 0.5, "most": 4}}'
 GDAL_ARC_MM = 0.002  # mm; how far inside a round end GDAL's chords may lie: 0.65 mm radius in steps of 4 degrees
 
@@ -79,8 +82,9 @@ def assert_every_web_holds_in_the_record(
     assert thinnest_mm >= max(told_mm, 0.0) - GDAL_ARC_MM
 
 
-@pytest.mark.parametrize("pair", PAIRS, ids="-".join)
-@pytest.mark.parametrize("name", ["demo", *PIECE_NAMES])
+@pytest.mark.parametrize(
+    ("name", "pair"), PLAYED, ids=lambda value: value if isinstance(value, str) else "-".join(value)
+)
 def test_a_disc_read_by_gdal_plays_every_pluck_and_keeps_every_web(
     name: str, pair: tuple[str, str], tmp_path: Path
 ) -> None:
@@ -209,7 +213,7 @@ def tune_of(notes: list[tuple[int, int, int]]) -> bytes:
 NOTES = st.lists(st.tuples(st.integers(0, 900), st.integers(36, 100), st.integers(1, 127)), min_size=1, max_size=60)
 
 
-@settings(max_examples=25, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=tried(25), deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(notes=NOTES, pair=st.sampled_from(PAIRS))
 def test_a_generated_piece_plays_every_pluck_at_its_moment(
     notes: list[tuple[int, int, int]], pair: tuple[str, str], tmp_path: Path

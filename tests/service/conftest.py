@@ -5,8 +5,8 @@ one: nothing names another. Tests of what one database alone has say so with `sq
 
 A test in a folder of ABOVE_THE_STORE that goes through a table of cases goes through all of them on SQLite, and on
 PostgreSQL through the first: what it holds of each case is decided before the store is asked or after. Where a case is
-about what a database can hold or be asked, the test says so with `each_case_on_both`. TESTS=thorough runs every case on
-both.
+about what a database can hold or be asked, the test says so with `each_case_on_both`. A test that takes long and says
+nothing of a database is left to SQLite with `sqlite_first`. TESTS=thorough runs everything on both.
 """
 
 import atexit
@@ -156,24 +156,41 @@ def each_case_on_both(because: str) -> pytest.MarkDecorator:
     return pytest.mark.each_case_on_both(because)
 
 
+def sqlite_first(because: str) -> pytest.MarkDecorator:
+    """Marks a long test that is run on PostgreSQL in the thorough run alone.
+
+    Args:
+        because: What it is about, or where else that is tried on both.
+    """
+    return pytest.mark.sqlite_first(because)
+
+
+def pytest_configure(config: pytest.Config) -> None:
+    """Name the marks."""
+    config.addinivalue_line("markers", "each_case_on_both(because): every case of it is run on both databases")
+    config.addinivalue_line("markers", "sqlite_first(because): run on PostgreSQL by TESTS=thorough alone")
+
+
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
-    """Leave further cases to SQLite."""
+    """Leave to SQLite what says nothing of a database."""
     if THOROUGH:
         return
-    left = [item for item in items if _is_a_further_case_on_postgresql(item)]
+    left = [item for item in items if _is_left_to_sqlite(item)]
     if left:
         config.hook.pytest_deselected(items=left)
         leaving = set(left)
         items[:] = [item for item in items if item not in leaving]
 
 
-def _is_a_further_case_on_postgresql(item: pytest.Item) -> bool:
+def _is_left_to_sqlite(item: pytest.Item) -> bool:
     case = getattr(item, "callspec", None)
-    if case is None or case.params.get("database_url") != "postgresql":
+    if case is None or "postgresql" not in (case.params.get(name) for name in ("database_url", "module_database_url")):
         return False
+    if item.get_closest_marker("sqlite_first") is not None:
+        return True
     if not any(item.path.is_relative_to(folder) for folder in ABOVE_THE_STORE):
         return False
-    if item.get_closest_marker("each_case_on_both") is not None:
+    if "database_url" not in case.params or item.get_closest_marker("each_case_on_both") is not None:
         return False
     return any(place > 0 for name, place in case.indices.items() if name != "database_url")
 

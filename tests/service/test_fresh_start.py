@@ -33,7 +33,9 @@ def copy(tmp_path_factory: pytest.TempPathFactory) -> Path:
 
 
 def run(command: list[str], folder: Path, **more: str) -> Ended:
-    surroundings = {name: value for name, value in os.environ.items() if name not in ("PYTHONPATH", "VIRTUAL_ENV")}
+    others = ("PYTHONPATH", "VIRTUAL_ENV", "PYTHONDONTWRITEBYTECODE")
+    surroundings = {name: value for name, value in os.environ.items() if name not in others}
+    surroundings["PIP_NO_COMPILE"] = "yes"  # what is imported is compiled then: a small part of what is installed
     return subprocess.run(
         command, cwd=folder, env=surroundings | more, capture_output=True, text=True, check=False, timeout=600
     )

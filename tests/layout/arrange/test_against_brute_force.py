@@ -21,6 +21,7 @@ from tests.layout.arrange.random_problems import (
     problems,
     worth_of_choice,
 )
+from tests.thorough import tried
 
 SEEDS = 800  # the first of them; tens of thousands were run while this was written
 
@@ -45,7 +46,7 @@ def assert_best(problem: Problem) -> int | None:
     return solved.worth
 
 
-@settings(max_examples=200, deadline=None, derandomize=True)
+@settings(max_examples=tried(200), deadline=None, derandomize=True)
 @given(problems())
 def test_the_choice_is_the_best_of_all_and_proved(problem: Problem) -> None:
     assert_best(problem)

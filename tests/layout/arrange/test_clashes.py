@@ -6,6 +6,7 @@ from layout.arrange.clashes import clashing
 from layout.arrange.problem import NO_PLUCK, Problem
 from tests.layout.arrange.by_hand import Asked, beside, drive_of, problem_with
 from tests.layout.arrange.random_problems import Spot, keeps_the_rules, problem_of, spots_of
+from tests.thorough import tried
 
 
 def forced(at_ms: float, tracks: tuple[int, ...] = (0,)) -> Asked:
@@ -65,7 +66,7 @@ def have_room(problem: Problem, plucks: list[int]) -> bool:
     return go_on(plucks, [])
 
 
-@settings(max_examples=100, deadline=None, derandomize=True)
+@settings(max_examples=tried(100), deadline=None, derandomize=True)
 @given(st.integers(0, 10**9))
 def test_what_clashes_has_no_room_and_has_room_without_any_one(seed: int) -> None:
     problem = problem_of(seed)

@@ -5,6 +5,7 @@ from layout.arrange.fitting import fitted
 from layout.arrange.problem import Problem
 from tests.layout.arrange.by_hand import Asked, beside, drive_of, problem_with
 from tests.layout.arrange.random_problems import best_worth, chosen, is_complete, keeps_the_rules, problems, spots_of
+from tests.thorough import tried
 
 
 def put_down(problem: Problem, preferred: tuple[int, ...] = ()) -> list[int] | None:
@@ -54,7 +55,7 @@ def test_webs_and_loads_are_kept() -> None:
     assert put_down(heavy) == [1]
 
 
-@settings(max_examples=100, deadline=None, derandomize=True)
+@settings(max_examples=tried(100), deadline=None, derandomize=True)
 @given(problems())
 def test_what_is_put_down_keeps_every_rule_and_leaves_no_room(problem: Problem) -> None:
     found = put_down(problem)

@@ -29,11 +29,12 @@ from tests.layout.arrange.test_stage_against_brute_force import (
     random_settings,
     random_tune,
 )
+from tests.thorough import tried
 
 SEEDS = st.integers(0, 10**9)
 WITH_LOAD = ("weak drive", "weak drive, close tracks")
 A_COMB = st.sampled_from(sorted(COMBS))
-OFTEN = settings(max_examples=60, deadline=None, derandomize=True)
+OFTEN = settings(max_examples=tried(60), deadline=None, derandomize=True)
 
 
 def tune_of(seed: int) -> tuple[Score, Settings]:
@@ -100,7 +101,7 @@ def test_a_larger_nudge_never_lowers_the_worth(seed: int, comb: str, one_ms: int
     assert worth_on(MOVEMENTS[comb], score, small) <= worth_on(MOVEMENTS[comb], score, large)
 
 
-@settings(max_examples=100, deadline=None, derandomize=True)
+@settings(max_examples=tried(100), deadline=None, derandomize=True)
 @given(problems(), st.integers(2, 50))
 def test_scaling_all_weights_changes_no_choice(problem: Problem, factor: int) -> None:
     scaled = replace(problem, worth=problem.worth * factor, ringing_cost=problem.ringing_cost * factor)
@@ -187,7 +188,7 @@ def nudge_allowed_s(arrangement: Arrangement, asked: Settings, pluck: int) -> fl
     return (melody_ms if melody else asked.largest_nudge_ms) / 1000
 
 
-@settings(max_examples=150, deadline=None, derandomize=True)
+@settings(max_examples=tried(150), deadline=None, derandomize=True)
 @given(A_COMB, SEEDS)
 def test_planned_moments_keep_every_rule_on_the_disc(comb: str, seed: int) -> None:
     score, asked = tune_of(seed)

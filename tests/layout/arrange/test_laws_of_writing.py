@@ -36,6 +36,7 @@ from tests.layout.arrange.small_comb import (
 )
 from tests.layout.arrange.test_laws_of_arranging import ROUNDING, loosened, tracks_of
 from tests.layout.arrange.test_stage_against_brute_force import TEETH, random_tune
+from tests.thorough import tried
 
 UNDAMPED = [tooth | {"damped": False} for tooth in TEETH]
 QUICK_WHEEL = {**SMALL_COMB["star_wheel"], "engagement_arc_mm": 0.6}  # repeats after 0.06 to 0.2 s
@@ -55,7 +56,7 @@ WITHOUT_A_DRIVE = st.sampled_from(sorted(set(COMBS) - {"weak drive"}))
 SEEDS = st.integers(0, 10**9)
 # The stage lets edges be 1e-9 rad nearer than stated and rounds moments and limits to a nanosecond: 2 ns are 2e-10 rad.
 GRAIN_RAD = 1.3e-9
-OFTEN = settings(max_examples=80, deadline=None, derandomize=True)
+OFTEN = settings(max_examples=tried(80), deadline=None, derandomize=True)
 
 EXTRA: dict[str, list[Any]] = {"pluck_again_s": [None, 0.1, 0.25, 0.7], "two_teeth_from_velocity": [None, 1, 64]}
 COSTS: dict[str, list[Any]] = {"ringing_tooth_cost": [0, 0.3, 1], "ringing_bass_cost": [0, 0.5, 1]}
@@ -280,7 +281,7 @@ def test_ringing_teeth_cost_their_share_and_no_more_than_the_choice_made_without
     assert costly.worth.kept == with_ringing_teeth(costly, cost) >= with_ringing_teeth(without, cost)
 
 
-@settings(OFTEN, max_examples=200)
+@settings(OFTEN, max_examples=tried(200))
 @given(ON_TRACKS_ALONE, SEEDS)
 def test_where_no_other_track_is_in_the_way_chords_from_the_bass_keep_as_much(comb: str, seed: int) -> None:
     score = tune_of(seed)

@@ -16,6 +16,7 @@ from layout.arrange.solving import Solved, Solving
 from tests.layout.arrange.by_hand import Asked, drive_of, problem_with
 from tests.layout.arrange.random_problems import best_worth, chosen, is_complete, keeps_the_rules, worth_of_choice
 from tests.layout.arrange.test_wild_teeth import wild_problems
+from tests.thorough import tried
 
 
 def solved_with(problem: Problem, looks: int) -> tuple[Solved, Problem, Budget]:
@@ -81,7 +82,7 @@ def test_chords_are_not_spread_where_looking_for_them_takes_too_long(monkeypatch
     assert (as_asked.worth, as_asked.bound) == (1000, 2000)
 
 
-@settings(max_examples=150, deadline=None, derandomize=True)
+@settings(max_examples=tried(150), deadline=None, derandomize=True)
 @given(wild_problems(), st.sampled_from((0, 50, 4_000, 12_000)))
 def test_out_of_looks_a_choice_is_sound_below_its_bound_and_the_same_again(problem: Problem, looks: int) -> None:
     problem = replace(problem, must_sound=np.zeros(problem.pluck_count, dtype=np.bool_))

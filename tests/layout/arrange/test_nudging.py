@@ -10,6 +10,7 @@ from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solving
 from tests.layout.arrange.by_hand import MS, Asked, beside, problem_with
 from tests.layout.arrange.random_problems import problems
+from tests.thorough import tried
 
 
 def nudges_ms(problem: Problem) -> list[float]:
@@ -163,7 +164,7 @@ def test_a_choice_without_moments_is_a_fault_of_the_program() -> None:
         nudged(problem, [0, 1])
 
 
-@settings(max_examples=150, deadline=None, derandomize=True)
+@settings(max_examples=tried(150), deadline=None, derandomize=True)
 @given(problems())
 def test_the_moments_lie_in_their_windows_and_keep_every_rule(problem: Problem) -> None:
     solving = Solving(problem)

@@ -20,6 +20,7 @@ from tests.layout.arrange.small_comb import (
     score_of,
     spacing_for,
 )
+from tests.thorough import tried
 
 AS_WRITTEN = {"mode": "fixed", "semitones": 0}
 C4_TWICE: list[Note] = [(0.0, "C4", 127), (0.5, "C4", 1)]  # track 1 repeats after 1 s: only one can sound
@@ -189,7 +190,7 @@ CROWDED_SPACING = spacing_for(CROWDED, min_web_mm=1.0)
 A_STEP = st.tuples(st.integers(-4, 12), st.sampled_from(["E4", "E4", "G4"]), st.sampled_from([False] * 3 + [True]))
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=tried(150), deadline=None)
 @given(st.lists(A_STEP, min_size=2, max_size=7, unique_by=lambda note: note[:2]), st.integers(0, 2))
 # Two that need going back twice, and over both keys; random tunes seldom do.
 @example([(1, "E4", False), (2, "E4", True), (3, "E4", False), (3, "G4", False), (-4, "E4", False)], 0)

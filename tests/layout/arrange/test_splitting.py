@@ -15,6 +15,7 @@ from layout.errors import DocumentError
 from layout.mechanics.arrays import frozen_floats
 from layout.read import Score
 from tests.layout.arrange.small_comb import Note, asking, score_of
+from tests.thorough import tried
 
 NONE_RULED_OUT: frozenset[int] = frozenset()
 # Bars of 2 s, beats of 0.5 s, notes of 0.25 s: score_of.
@@ -71,7 +72,7 @@ def small_tunes(draw: st.DrawFn) -> Score:
     return replace(score, duration_s=frozen_floats(lengths))
 
 
-@settings(max_examples=400, deadline=None)
+@settings(max_examples=tried(400), deadline=None)
 @given(
     score=small_tunes(),
     discs=st.integers(2, 5),
@@ -186,7 +187,7 @@ def test_more_discs_than_moments_are_refused(notes: list[Note], message: str) ->
     assert [problem.pointer for problem in refusal.value.problems] == ["/discs"]
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=tried(200), deadline=None)
 @given(score=small_tunes(), turn_s=st.sampled_from([0.2, 0.5, 1.0, 2.0]))
 def test_more_discs_never_lose_more_notes(score: Score, turn_s: float) -> None:
     asked = list(range(score.note_count))
@@ -204,7 +205,7 @@ def fitting(**bounds: float) -> dict[str, object]:
     return {"speed": {"mode": "fit", "least": 0.01, "most": 100.0, **bounds}}
 
 
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=tried(300), deadline=None)
 @given(score=small_tunes(), turn_s=st.sampled_from([0.3, 0.7, 1.0, 36.2]), from_s=st.sampled_from([None, 0.0, 0.3]))
 def test_one_disc_fits_at_the_speed_that_fits_the_tune(score: Score, turn_s: float, from_s: float | None) -> None:
     wanted = asking(**fitting(), passage={"from_s": from_s})
@@ -214,7 +215,7 @@ def test_one_disc_fits_at_the_speed_that_fits_the_tune(score: Score, turn_s: flo
     assert factor == moments_of(score, wanted, NONE_RULED_OUT, turn_s).speed_factor
 
 
-@settings(max_examples=300, deadline=None)
+@settings(max_examples=tried(300), deadline=None)
 @given(score=small_tunes(), discs=st.integers(2, 4), turn_s=st.sampled_from([0.3, 0.7, 1.0]))
 def test_at_the_fitting_speed_nothing_is_lost_and_any_slower_something_is(
     score: Score, discs: int, turn_s: float

@@ -22,6 +22,7 @@ from tests.layout.arrange.random_problems import (
     spots_of,
     worth_of_choice,
 )
+from tests.thorough import tried
 
 WILD_LOADS = (1, 40, 10**6, 10**12)  # thousandths of a N mm; the last is 2000 N/mm lifted by 2000 mm on a large disc
 WILD_WINDOWS_MS = (0.01, 20, 70_000, 3 * 10**6)  # of turns of some seconds to a minute
@@ -71,7 +72,7 @@ def test_a_light_tooth_is_not_lost_beside_one_a_million_million_times_as_heavy()
     assert (found.worth, found.bound) == (2000, 2000)
 
 
-@settings(max_examples=200, deadline=None, derandomize=True)
+@settings(max_examples=tried(200), deadline=None, derandomize=True)
 @given(wild_problems())
 def test_loads_are_counted_as_one_by_one(problem: Problem) -> None:
     drive = problem.drive
@@ -97,7 +98,7 @@ def test_loads_are_counted_as_one_by_one(problem: Problem) -> None:
     assert sum(map(len, found)) <= lifted_count(problem, spots)
 
 
-@settings(max_examples=150, deadline=None, derandomize=True)
+@settings(max_examples=tried(150), deadline=None, derandomize=True)
 @given(wild_problems())
 def test_the_best_choice_is_found_and_kept_within_the_rules_whatever_the_teeth(problem: Problem) -> None:
     problem = replace(problem, must_sound=np.zeros(problem.pluck_count, dtype=np.bool_))
@@ -113,7 +114,7 @@ def test_the_best_choice_is_found_and_kept_within_the_rules_whatever_the_teeth(p
         assert solved.worth == best_worth(solving.problem)
 
 
-@settings(max_examples=100, deadline=None, derandomize=True)
+@settings(max_examples=tried(100), deadline=None, derandomize=True)
 @given(wild_problems())
 def test_what_is_put_down_by_hand_keeps_the_rules_whatever_the_teeth(problem: Problem) -> None:
     problem = replace(problem, must_sound=np.zeros(problem.pluck_count, dtype=np.bool_))

@@ -13,6 +13,7 @@ from layout.check.webs import webs_between_openings_hold
 from layout.documents import Cutter, Movement
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+from tests.thorough import tried
 
 LOW = [0.002, 0.002, 0.002]  # of 0.5 mm: a micrometre, which nothing here is below
 
@@ -206,7 +207,7 @@ def test_the_shipped_cutters_rules_never_forbid_what_their_hard_limits_allow_on_
     assert found_on(disc_of(movement, [(track.track, 4.0) for track in movement.tracks][::3], cutter)) == []
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=tried(30), deadline=None)
 @given(
     movement=st.sampled_from(SHIPPED),
     cutter=st.sampled_from([LASER, PRESS]),

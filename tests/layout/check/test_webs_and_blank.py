@@ -20,6 +20,7 @@ from layout.check.webs import webs_between_openings_hold
 from layout.documents import Cutter, Movement
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+from tests.thorough import tried
 
 
 def test_two_openings_too_near_leave_a_web_that_is_measured() -> None:
@@ -96,7 +97,7 @@ def outlines(disc: Disc) -> list[shapely.Geometry]:
     return made
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=tried(40), deadline=None)
 @given(
     movement=st.sampled_from(SHIPPED),
     cutter=st.sampled_from([LASER, PRESS]),
@@ -119,7 +120,7 @@ def test_the_webs_found_are_those_of_outlines_compared_pair_by_pair(
                 assert (one, two) not in found
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=tried(30), deadline=None)
 @given(
     movement=st.sampled_from(SHIPPED),
     plucks=st.lists(st.tuples(st.integers(1, 6), st.floats(0, 12)), min_size=2, max_size=12),
@@ -142,7 +143,7 @@ def test_turning_the_disc_changes_no_web(movement: Movement, plucks: list[tuple[
     assert turned_webs == pytest.approx(webs, abs=1e-9)
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=tried(30), deadline=None)
 @given(
     plucks=st.lists(st.tuples(st.integers(1, 6), st.floats(0, 12)), min_size=2, max_size=10),
     more=st.tuples(st.integers(1, 6), st.floats(0, 12)),

@@ -23,6 +23,7 @@ from layout.write import write_dxf
 from tests.layout.cut.test_blank import HOLE, NOTCH
 from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
+from tests.thorough import tried
 
 KERF_MM = 0.12  # of the shipped laser
 BRIDGES = {"count": 4, "width_mm": 0.8}
@@ -183,7 +184,7 @@ def test_bridges_are_shared_out_by_length_with_one_more_for_the_longer() -> None
     assert [[round((gap.from_rad + gap.to_rad) / 2, 9) for gap in gaps] for gaps in shared] == [[0.5], [2.5, 3.5, 4.5]]
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=tried(100), deadline=None)
 @given(
     arcs=st.lists(st.floats(0.05, 2.0), min_size=1, max_size=6),
     count=st.integers(1, 24),

@@ -20,6 +20,7 @@ from layout.write import write_dxf
 from tests.layout.cut.test_blank import HOLE, NOTCH, SLOT, traced
 from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import random_disc
+from tests.thorough import tried
 
 KERF_MM = 0.12  # of the shipped laser
 HALF_MM = KERF_MM / 2
@@ -210,7 +211,7 @@ def test_what_closes_is_drawn_as_it_is_finished() -> None:
     assert drawn.points_mm.tolist() == finished.points_mm.tolist()  # type: ignore[union-attr]
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=tried(100), deadline=None)
 @given(
     sides=st.integers(3, 9),
     seed=st.integers(0, 2**32 - 1),

@@ -22,6 +22,7 @@ from layout.write import write_dxf
 from tests.layout.cut.test_blank import HOLE, NOTCH, SLOT, traced
 from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import random_disc
+from tests.thorough import tried
 
 HALF_KERF_MM = 0.06  # of the shipped laser
 LED_IN = cutter_with({"lead_in": {"length_mm": 1.0}})
@@ -203,7 +204,7 @@ def test_each_hole_without_room_is_named_once() -> None:
     assert "centre hole" not in " ".join(finding.message for finding in lead_findings(FEATURED, barely))
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=tried(60), deadline=None)
 @given(width=st.floats(0.5, 4), height=st.floats(0.5, 4), length=st.floats(0.05, 6), clear=st.floats(0, 0.5))
 def test_into_a_rectangle_a_lead_is_found_where_there_is_room(
     width: float, height: float, length: float, clear: float

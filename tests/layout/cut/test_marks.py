@@ -14,6 +14,7 @@ from layout.documents import Cutter, Movement
 from layout.mechanics.lettering import strokes_mm
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+from tests.thorough import tried
 
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
 FINGERPRINT = "0123456789abcdef"
@@ -425,7 +426,7 @@ def circles(centres_mm: Sequence[Sequence[float]], radius_mm: Sequence[float]) -
     return [shapely.Point(c).buffer(r, quad_segs=64) for c, r in zip(centres_mm, radius_mm, strict=True)]
 
 
-@settings(max_examples=20, deadline=None)
+@settings(max_examples=tried(20), deadline=None)
 @given(
     seed=st.integers(0, 2**32 - 1),
     which=st.integers(0, 2),

@@ -23,6 +23,7 @@ from layout.place.disc import Disc
 from layout.walk import lay_out
 from tests.bench.opponents.long_two_opt import long_two_opt_mm
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+from tests.thorough import tried
 
 DEMO_TUNE = (Path(service.demo.__file__).parent / "tune.mid").read_bytes()
 NO_PAIRS = np.zeros((0, 2), dtype=np.int64)
@@ -145,7 +146,7 @@ def test_hits_and_outlines_stand_in_the_same_order(cutter: Cutter) -> None:
     assert nearest.tolist() == list(range(5))
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=tried(60), deadline=None)
 @given(seed=st.integers(0, 2**32 - 1), count=st.integers(0, 60), share=st.floats(0, 0.45))
 def test_every_stop_is_visited_once_and_forbidden_pairs_are_kept_apart_where_they_can_be(
     seed: int, count: int, share: float

@@ -14,6 +14,7 @@ from layout.documents import Cutter, Movement
 from layout.mechanics.arrays import frozen_floats
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+from tests.thorough import tried
 
 ANTICLOCKWISE = movement_with({"turns": "anticlockwise"})
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
@@ -289,7 +290,7 @@ def test_the_star_side_is_the_mirror_image_of_the_label_side(movement: Movement)
             assert (ours.centres_mm * [1, -1]).tolist() == theirs.centres_mm.tolist()
 
 
-@settings(max_examples=15, deadline=None)
+@settings(max_examples=tried(15), deadline=None)
 @given(seed=st.integers(0, 2**32 - 1), turn_deg=st.floats(-360, 360), movement=st.sampled_from([*SHIPPED, PLAIN]))
 def test_turning_a_disc_turns_what_is_cut_of_its_projections(seed: int, turn_deg: float, movement: Movement) -> None:
     disc = random_disc(movement, LASER, seed, count=5)
@@ -307,7 +308,7 @@ def test_turning_a_disc_turns_what_is_cut_of_its_projections(seed: int, turn_deg
         assert second.points_mm[where[int(index)]] == pytest.approx(turned_mm, abs=1e-9)
 
 
-@settings(max_examples=10, deadline=None)
+@settings(max_examples=tried(10), deadline=None)
 @given(
     seed=st.integers(0, 2**32 - 1),
     movement=st.sampled_from(SHIPPED),

@@ -18,6 +18,7 @@ from layout.check.star_wheel import (
 )
 from layout.mechanics.depth import depth_band
 from tests.layout.examples import LASER, PLAIN, SHIPPED, disc_of, movement_with
+from tests.thorough import tried
 
 CHECKS = (
     star_clears_the_disc,
@@ -73,7 +74,7 @@ def test_slots_have_no_depth_and_measured_arcs_no_limit() -> None:
     assert (measured.least_mm, measured.most_mm) == pytest.approx((1.26, 1.56))
 
 
-@settings(deadline=None, max_examples=200)
+@settings(deadline=None, max_examples=tried(200))
 @given(
     points=st.integers(4, 10),
     axis_mm=st.floats(3.3, 4.4),

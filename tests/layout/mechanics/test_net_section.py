@@ -13,6 +13,7 @@ from layout.documents import Cutter, Movement
 from layout.mechanics.net_section import LINE_GRAIN_MM, RING_GRAIN_RAD, MetalLeft, metal_left
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
+from tests.thorough import tried
 
 # The press's lance L12 leaves a rectangle, 1.6 across and 2.3 along. It strikes 0.7 behind the working edge, in the
 # rectangle's middle, and stands square to the radius there: at √(r² − 0.7²) from the centre, asin(0.7/r) behind.
@@ -219,7 +220,7 @@ TUNES = st.lists(st.tuples(st.integers(1, 8), st.floats(0, 4)), min_size=1, max_
 WIDE_RELIEF = cutter_with({"fold/relief_width_mm": 0.6, "fold/fold_side": "ahead"})
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=tried(40), deadline=None)
 @given(
     movement=st.sampled_from(SHIPPED),
     cutter=st.sampled_from([LASER, PRESS, WIDE_RELIEF]),
@@ -255,7 +256,7 @@ def test_no_sampled_ray_or_ring_leaves_less_and_those_told_leave_as_much(
     assert min(told) == pytest.approx(left.ring_share, abs=edge_share)
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=tried(30), deadline=None)
 @given(movement=st.sampled_from(SHIPPED), plucks=TUNES, turn_rad=st.floats(0, 6))
 def test_turning_the_disc_changes_neither_minimum(
     movement: Movement, plucks: list[tuple[int, float]], turn_rad: float
@@ -269,7 +270,7 @@ def test_turning_the_disc_changes_neither_minimum(
     assert after.ring_share == pytest.approx(before.ring_share, abs=RING_GRAIN_RAD)
 
 
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=tried(30), deadline=None)
 @given(plucks=TUNES, more=st.tuples(st.integers(1, 8), st.floats(0, 4)))
 def test_one_more_opening_in_the_band_never_leaves_more(
     plucks: list[tuple[int, float]], more: tuple[int, float]

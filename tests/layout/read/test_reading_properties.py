@@ -13,6 +13,7 @@ from layout.errors import MidiReadError
 from layout.read import Score, read_score
 from tests.layout.read.hexdump import midi_file, riff
 from tests.layout.read.test_specification_examples import EXAMPLE_FORMAT_0, EXAMPLE_FORMAT_1
+from tests.thorough import tried
 
 
 class Written(NamedTuple):
@@ -157,7 +158,7 @@ SOUND_FILES = [
 
 
 @given(data=st.data(), sound=st.sampled_from(SOUND_FILES))
-@settings(max_examples=400)
+@settings(max_examples=tried(400))
 def test_a_sound_file_with_bytes_changed_gives_a_score_or_an_error(data: st.DataObject, sound: bytes) -> None:
     tune = bytearray(sound)
     places = data.draw(st.lists(st.integers(0, len(tune) - 1), min_size=1, max_size=4))

@@ -27,6 +27,7 @@ from tests.layout.sheets.drawn import (
     laser,
     record_dxf,
 )
+from tests.thorough import tried
 
 GOOD = disc_dxf()
 R12 = disc_dxf(laser(drawing_release="R12"))
@@ -284,7 +285,7 @@ def test_a_rim_off_by_less_than_the_allowed_is_taken(dxf: bytes) -> None:
     assert read_as_drawn(changed(moved(0.003, -0.003), dxf)).rim_diameter_mm == pytest.approx(RIM_MM, abs=0.01)
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=tried(150), deadline=None)
 @given(st.integers(0, len(GOOD) - 1), st.binary(min_size=1, max_size=6), st.booleans())
 def test_a_damaged_file_is_read_or_refused_and_nothing_else(place: int, junk: bytes, cut_off: bool) -> None:  # noqa: FBT001 - hypothesis gives it
     dxf = GOOD[:place] + junk + (b"" if cut_off else GOOD[place + len(junk) :])

@@ -11,6 +11,7 @@ from layout.read_back import Reading, read_back
 from layout.read_back.limits import MOST_MIB
 from tests.layout.examples import LASER, PLAIN, disc_of
 from tests.layout.read_back.drawings import bytes_of, disc_document
+from tests.thorough import tried
 
 GOOD = bytes_of(disc_document(disc_of(PLAIN, [(1, 5.0), (3, 10.0)])))
 
@@ -129,7 +130,7 @@ def answer(dxf: bytes) -> Reading | DrawingReadError:
         return error
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=tried(60), deadline=None)
 @given(
     seed=st.integers(0, 2**32 - 1),
     changes=st.integers(1, 40),
@@ -166,7 +167,7 @@ def mutated(seed: int, changes: int, how: str) -> bytes:
     return b"\n".join(lines)
 
 
-@settings(max_examples=50, deadline=None)
+@settings(max_examples=tried(50), deadline=None)
 @given(st.binary(max_size=300))
 def test_any_bytes_give_a_reading_or_a_drawing_error(dxf: bytes) -> None:
     answered = answer(dxf)

@@ -21,6 +21,7 @@ from layout.read_back import Reading, read_back
 from layout.write import write_dxf
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
+from tests.thorough import tried
 
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
 AHEAD_LASER = cutter_with({"fold/fold_side": "ahead"})
@@ -54,7 +55,7 @@ def test_a_drawing_gives_back_track_and_angle_of_every_projection(movement: Move
     assert reading.disc.cutter is cutter
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=tried(25), deadline=None)
 @given(
     seed=st.integers(0, 2**32 - 1),
     count=st.integers(0, 40),

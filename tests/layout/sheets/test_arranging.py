@@ -15,6 +15,7 @@ from tests.layout.sheets.test_cutting_order import (
 )
 from tests.layout.sheets.test_remnants import assert_remnants_lie_in_the_sheet_and_off_every_disc
 from tests.layout.write.test_sheet_files import assert_what_the_drawings_cut_keeps_every_rule
+from tests.thorough import tried
 
 DENSEST = math.pi / math.sqrt(12)  # of equal discs in the plane: A. Thue 1910, L. Fejes Tóth 1940
 
@@ -31,7 +32,7 @@ def assert_no_fuller_than_is_proved_possible(plan: SheetPlan) -> None:
 
 
 # One property for all laws of a plan: arranging takes its time, and so each law is held against all thirty jobs.
-@settings(max_examples=30, deadline=None)
+@settings(max_examples=tried(30), deadline=None)
 @given(jobs())
 def test_whatever_the_job_its_plan_keeps_every_law(job: SheetJob) -> None:
     plan = arrange_on_sheets(job)

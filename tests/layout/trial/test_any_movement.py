@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 
 from tests.layout.examples import LASER, PRESS, cutter_with, movement_with
 from tests.layout.trial.reading import at_mark, read_piece
+from tests.thorough import tried
 
 GRAIN_MM = 2e-5
 
@@ -36,7 +37,7 @@ def movements(draw: st.DrawFn) -> dict[str, Any]:
 
 
 @given(changes=movements(), side=st.sampled_from(["label-side", "star-side"]), kind=st.sampled_from(["laser", "press"]))
-@settings(max_examples=25)
+@settings(max_examples=tried(25))
 def test_whatever_the_movement_what_is_cut_stays_apart_and_inside(
     changes: dict[str, Any], side: str, kind: str
 ) -> None:
@@ -74,7 +75,7 @@ def test_whatever_the_movement_what_is_cut_stays_apart_and_inside(
 
 
 @given(min_web_mm=st.floats(0.2, 1.5), thickness_mm=st.floats(0.3, 1.2))
-@settings(max_examples=10)
+@settings(max_examples=tried(10))
 def test_a_web_step_is_the_same_share_of_any_least_web(min_web_mm: float, thickness_mm: float) -> None:
     movement = movement_with({"disc/thickness_mm": thickness_mm})
 

@@ -33,6 +33,7 @@ from tests.layout.write.press_runs import (
     struck_out,
 )
 from tests.layout.write.press_simulator import Alarm, DryPress
+from tests.thorough import tried
 
 DEMO_TUNE = Path(__file__).parents[3] / "service" / "demo" / "tune.mid"
 
@@ -184,7 +185,7 @@ def test_a_way_back_that_is_longer_than_half_a_turn_with_its_take_up_is_made_in_
     st.lists(st.tuples(st.integers(1, 67), st.floats(0, 359.99)), min_size=1, max_size=8),
     st.sampled_from([0.001, 1, 29.9, 30]),
 )
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=tried(40), deadline=None)
 def test_with_any_take_up_every_turn_is_less_than_half_and_each_hit_is_come_onto_from_one_side(
     placed: list[tuple[int, float]], take_up_deg: float
 ) -> None:

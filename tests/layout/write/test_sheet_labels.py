@@ -18,6 +18,7 @@ from layout.errors import DocumentError
 from layout.sheet_walk import plan_sheets, sheet_files_of
 from tests.layout.sheets.drawn import LED_IN, RIM_MM, disc_dxf, entities_of, laser
 from tests.layout.sheets.jobs import job_of, jobs, sheet
+from tests.thorough import tried
 
 OWN: dict[str, Any] = {
     "SLITS": {"name": "CUT-INNER", "colour": 1},
@@ -71,7 +72,7 @@ def judged(job: SheetJob) -> int:
     return labelled
 
 
-@settings(max_examples=10, deadline=None)
+@settings(max_examples=tried(10), deadline=None)
 @given(jobs())
 def test_labels_keep_off_everything_and_stand_nearest_to_their_own_disc(job: SheetJob) -> None:
     judged(job)

@@ -32,6 +32,7 @@ from tests.layout.write.examples import (
     disc_of,
 )
 from tests.layout.write.work_sheets import PIXELS_PER_MM, ink_of, row_of, sheet_of, words_of
+from tests.thorough import tried
 
 WIDE_LINE_MM = 0.5
 PIXEL_MM = 1 / PIXELS_PER_MM
@@ -331,7 +332,7 @@ def test_openings_far_apart_still_have_a_thinnest_web() -> None:
     assert webs[0].web_mm > 250  # 45 + 210 mm less the openings
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=tried(25), deadline=None)
 @given(
     placed=st.lists(st.tuples(st.integers(1, 31), st.integers(0, 359)), min_size=2, max_size=12, unique=True),
     most=st.integers(1, 6),

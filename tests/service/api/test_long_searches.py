@@ -8,6 +8,7 @@ import pytest
 from layout import walk
 from service.limits import Limits
 from tests.service.api.conftest import ClientFor
+from tests.service.conftest import sqlite_first
 from tests.service.fakes import TUNE, Client, FakePlanner
 from tests.service.hard_tune import hard_tune
 
@@ -61,6 +62,7 @@ def test_the_limit_is_told_with_the_others(client_for: ClientFor) -> None:
     assert [one["value"] for one in json.loads(limits.data)["limits"] if one["name"] == "search_s"] == [MOST_S]
 
 
+@sqlite_first("a search, which asks no database")
 def test_a_hard_tune_is_answered_with_the_best_found_by_then(client_for: ClientFor) -> None:
     client = client_for(walk, Limits(search_s=1))
     settings = json.dumps({"octave_moves": "all", "transpose": {"range": 48}})

@@ -26,7 +26,7 @@ from service.store.files import FileLostError
 from service.store.tables import PlanFile, Run
 from tests.service.api.guarded import bearing, new_key, problem_of
 from tests.service.api.test_orders import Shop as OrderShop
-from tests.service.conftest import environment_of
+from tests.service.conftest import environment_of, sqlite_first
 from tests.service.shop import TUNE, archive_of, keeper_of, planned
 
 FERN: dict[str, Any] = {"movements": ["fernhollow-31"]}
@@ -291,6 +291,7 @@ def test_a_hostile_archive_is_refused_and_why_is_told(shop: Shop, kind: str) -> 
     assert shop.run_count() == 0
 
 
+@sqlite_first("memory for what no database holds")
 def test_hostile_archives_are_refused_soon_and_in_little_memory(shop: Shop, tmp_path: Path) -> None:
     bodies = [tmp_path / f"body {number}" for number in range(len(HOSTILE))]
     for (make, _), body in zip(HOSTILE.values(), bodies, strict=True):
@@ -460,6 +461,7 @@ def test_results_whose_files_are_lost_never_look_whole(shop: Shop) -> None:
         zipfile.ZipFile(io.BytesIO(got))
 
 
+@sqlite_first("memory for what no database holds")
 def test_a_form_of_the_largest_size_is_in_memory_twice_at_most(shop: Shop, tmp_path: Path) -> None:
     body = tmp_path / "body"
     noise = random.Random(5).randbytes(2 * MIB)
@@ -475,6 +477,7 @@ def test_a_form_of_the_largest_size_is_in_memory_twice_at_most(shop: Shop, tmp_p
     assert answer.more_mib < 2 * 60 + 20
 
 
+@sqlite_first("memory for what no database holds")
 def test_results_are_sent_without_being_held_in_memory(shop: Shop, tmp_path: Path) -> None:
     run_id = shop.opened(archive_of(**{f"t{number}": TUNE for number in range(20)}))
     [large] = keeper_of(shop.parts).keep([random.Random(5).randbytes(8 * MIB)])

@@ -15,10 +15,11 @@ from service.background.planning_child import ChildEndedError, ChildTooLongError
 from service.parts import Parts
 from service.store.holds import FileKeeper
 from tests.faults.ordering import CUTTER, MOVEMENT, PlansHere, tune_called
-from tests.service.conftest import parts_of
+from tests.service.conftest import parts_of, sqlite_first
 
 MEMORY_MIB = 300
 LONG_S = 30.0
+of_a_process = sqlite_first("what becomes of a process, whatever it asked")
 
 
 @pytest.fixture(scope="module")
@@ -107,6 +108,7 @@ def test_one_child_serves_many_orders(kept_child: PlanningChild, request_for: Re
     assert len({answer.planned.told["discs"][0]["fingerprint"] for answer in answers if answer.planned}) == 20
 
 
+@of_a_process
 def test_what_libraries_print_is_no_answer(
     capfd: pytest.CaptureFixture[str], setup: ChildSetup, request_for: Requests
 ) -> None:
@@ -134,6 +136,7 @@ def test_a_plan_that_fills_memory_is_refused_and_the_child_lives_on(
     assert plan(kept_child, request_for(tune_called("Harvest"))).kind is Kind.PLANNED
 
 
+@of_a_process
 def test_a_child_that_keeps_memory_is_seen_to_have_grown(child: PlanningChild, request_for: Requests) -> None:
     plan(child, request_for(tune_called(f"do:grow {MEMORY_MIB // 2 - 30};")))
     before = child.has_grown
@@ -142,22 +145,26 @@ def test_a_child_that_keeps_memory_is_seen_to_have_grown(child: PlanningChild, r
     assert (before, child.has_grown) == (False, True)
 
 
+@of_a_process
 def test_each_plan_may_take_as_much_memory_as_the_first(child: PlanningChild, request_for: Requests) -> None:
     kinds = [plan(child, request_for(tune_called(f"do:grow {200 + number};"))).kind for number in range(3)]
 
     assert kinds == [Kind.PLANNED] * 3  # 600 MiB are kept in the end, though one plan may take 300
 
 
+@of_a_process
 def test_a_child_that_ends_is_told_by_its_code(child: PlanningChild, request_for: Requests) -> None:
     with pytest.raises(ChildEndedError, match=r"^its process ended with code 3$"):
         plan(child, request_for(tune_called("do:exit 3;")))
 
 
+@of_a_process
 def test_a_child_that_is_killed_is_told_by_its_signal(child: PlanningChild, request_for: Requests) -> None:
     with pytest.raises(ChildEndedError, match=r"^its process was ended by SIGSEGV$"):
         plan(child, request_for(tune_called("do:segfault;")))
 
 
+@of_a_process
 def test_a_plan_that_takes_too_long_is_killed_in_time(child: PlanningChild, request_for: Requests) -> None:
     begun_s = time.monotonic()
 
@@ -168,6 +175,7 @@ def test_a_plan_that_takes_too_long_is_killed_in_time(child: PlanningChild, requ
     assert not is_alive(child.pid)
 
 
+@of_a_process
 def test_a_plan_that_nobody_wants_any_more_is_killed(child: PlanningChild, request_for: Requests) -> None:
     with pytest.raises(ChildUnwantedError):
         child.plan(request_for(tune_called("do:spin;")), LONG_S, lambda: False)
@@ -204,11 +212,13 @@ def test_an_input_that_was_lost_is_refused_with_what_to_do(kept_child: PlanningC
     assert answer.reason == f"the file {lost} is not in the store of files; restore it from a backup"
 
 
+@of_a_process
 def test_a_planner_that_is_not_there_never_gets_warm(setup: ChildSetup) -> None:
     with pytest.raises(ChildEndedError, match=r"^its process ended with code 1$"):
         PlanningChild(replace(setup, planner="tests.faults.no_planner"))
 
 
+@of_a_process
 def test_a_child_dies_with_its_worker_even_while_it_computes(setup: ChildSetup, request_for: Requests) -> None:
     request = request_for(tune_called("do:spin;"))
     parent = subprocess.Popen(

@@ -15,6 +15,7 @@ from service.orders.test_tunes import REFUSAL, Deed, StateTune, state_tunes
 from service.parts import Parts
 from tests.faults.ordering import look
 from tests.service.background.test_worker import send, wait_for, wait_for_state, with_work
+from tests.service.conftest import sqlite_first
 from tests.service.shop import WEB_SHOP, WEB_TESTS, open_shop, placed, planned
 
 TUNES = {tune.name: tune for tune in state_tunes()}
@@ -39,6 +40,7 @@ def shop(parts: Parts) -> Parts:
     return with_work(parts)
 
 
+@sqlite_first("what a tune does to a worker; workers are tried on both")
 def test_each_leads_to_its_state(shop: Parts) -> None:
     order_ids = {name: ordered(shop, tune) for name, tune in TUNES.items() if name != "slow"}
     for order_id in order_ids.values():
@@ -59,6 +61,7 @@ def test_each_leads_to_its_state(shop: Parts) -> None:
     assert [one.plans == [] for one in seen.values()] == [one.state == "failed" for one in seen.values()]
 
 
+@sqlite_first("what a tune does to a worker; workers are tried on both")
 def test_the_slow_one_stays_in_planning(shop: Parts) -> None:
     order_id = ordered(shop, TUNES["slow"])
     send(shop, order_id)
@@ -73,6 +76,7 @@ def test_the_slow_one_stays_in_planning(shop: Parts) -> None:
     assert time.monotonic() - begun_s > 4
 
 
+@sqlite_first("what a tune does to a worker; workers are tried on both")
 def test_with_any_other_key_they_are_tunes_like_all_others(shop: Parts) -> None:
     order_ids = [ordered(shop, tune, WEB_SHOP) for tune in TUNES.values() if tune.deed is not Deed.NOTHING]
     for order_id in order_ids:

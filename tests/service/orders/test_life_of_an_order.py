@@ -55,6 +55,7 @@ from tests.service.shop import (
     release_seen,
     taken,
 )
+from tests.thorough import tried
 
 TOO_LONG = replace(
     ASKED, settings=b'{"passage": {"from_s": 0, "to_s": 60}, "speed": {"mode": "factor", "factor": 0.5}}'
@@ -385,7 +386,7 @@ def test_events_are_numbered_without_gaps(shop: Parts) -> None:
 STEPS = ("take", "publish", "fail", "hand back", "release", "replan", "cancel", "recall", "despite")
 
 
-@settings(max_examples=25, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=tried(25), deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(st.lists(st.sampled_from(STEPS), max_size=12))
 def test_whatever_is_tried_only_states_that_may_follow_are_reached(parts: Parts, tried: list[str]) -> None:
     """Each step is tried in whatever state the order is in: it is made or refused, and the story stays whole."""
