@@ -205,6 +205,23 @@ def test_by_keys_alone_a_disc_is_begun_given_up_and_laid_out(window: Window) -> 
     page.wait_for_url("**/discs/*")
 
 
+def test_who_goes_back_from_the_disc_finds_the_settings_with_the_fields_that_belong_to_them(window: Window) -> None:
+    page = begun(window)
+    page.select_option("[id='speed.mode']", "best")
+    page.fill("[id='speed.least']", "0.9")
+    page.set_input_files("#tune", FILE)
+    page.click("#send")
+    page.wait_for_url("**/discs/*")
+    page.wait_for_selector("#rulings[data-ready]")
+
+    page.go_back()
+    page.wait_for_selector(READY)
+
+    wait_until(page, "!document.getElementById('speed.least').closest('[data-when]').hidden")
+    assert page.input_value("[id='speed.least']") == "0.9"
+    assert not page.evaluate("document.querySelector('#new-disc').inert")
+
+
 def test_who_is_signed_in_sends_the_token_that_writes_must_bring(open_window: Callable[..., Window]) -> None:
     page = begun(open_window(signed_in=True))
     page.set_input_files("#tune", FILE)

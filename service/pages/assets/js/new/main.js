@@ -106,7 +106,12 @@ form.addEventListener("change", ({ target }) => {
 });
 takeDrops(input, find("#drop"), tuneFault);
 find("#save-settings").addEventListener("click", () => saveAs(settingsOf(form, rulings), input.files[0]?.name));
-addEventListener("pageshow", ({ persisted }) => persisted && stages?.end()); // back from the disc, by the browser's own way
+// Who comes back from the disc finds the fields as the browser has kept them, which may be after this has run.
+addEventListener("pageshow", () => {
+  stages?.end();
+  showChosen(input);
+  redraw();
+});
 showChosen(input);
 redraw();
 form.dataset.ready = "true";
