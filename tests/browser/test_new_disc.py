@@ -6,12 +6,18 @@ from collections.abc import Callable
 from playwright.sync_api import FilePayload, Page, Route
 
 from tests.browser.conftest import Window, wait_until
-from tests.browser.doing import drop, focused, tab_to
 from tests.service.shop import TUNE
 
 READY = "#new-disc[data-ready]"
 FILE: FilePayload = {"name": "turning-day.mid", "mimeType": "audio/midi", "buffer": TUNE}
 NO_TUNE: FilePayload = {"name": "letter.mid", "mimeType": "audio/midi", "buffer": b"no tune, but a letter"}
+DROP = """([bytes, name]) => {
+  const held = new DataTransfer();
+  held.items.add(new File([new Uint8Array(bytes)], name, { type: "audio/midi" }));
+  const told = { dataTransfer: held, bubbles: true, cancelable: true };
+  const place = document.querySelector("#drop");
+  for (const kind of ["dragenter", "dragover", "drop"]) place.dispatchEvent(new DragEvent(kind, told));
+}"""
 REFUSED = "the server responded with a status of 4"  # what the browser's own console says beside the page's words
 
 
@@ -23,10 +29,23 @@ def _hold(_: Route) -> None:
     """Let no answer come."""
 
 
+def focused(page: Page) -> str:
+    return str(page.evaluate("document.activeElement.id"))
+
+
+def tab_to(page: Page, wanted: str) -> None:
+    """Go on by Tab alone until a field has the focus."""
+    for _ in range(80):
+        if focused(page) == wanted:
+            return
+        page.keyboard.press("Tab")
+    raise AssertionError(f"Tab never reaches {wanted}")
+
+
 def test_a_tune_that_is_dropped_leads_to_the_page_of_its_disc(window: Window) -> None:
     page = begun(window)
 
-    drop(page, TUNE, "turning-day.mid")
+    page.evaluate(DROP, [list(TUNE), "turning-day.mid"])
     assert page.inner_text("#chosen").startswith("turning-day.mid")
     page.click("#send")
     page.wait_for_url("**/discs/*")
