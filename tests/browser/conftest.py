@@ -9,11 +9,11 @@ from typing import Literal
 import pytest
 from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Request, Route, sync_playwright
 
-from tests.browser.driving import ARGUMENTS, NOT_THERE, WITHIN_MS, chromium
-from tests.browser.driving import wait_until as wait_until
+from tests.browser.driving import ARGUMENTS, NOT_THERE, WITHIN_MS, chromium, wait_until
 from tests.browser.pages_list import ShownPage
 from tests.browser.served import Served, served
 
+__all__ = ["SCHEMES", "SHORTEST_PX", "SIZES", "Watch", "Window", "wait_until"]  # for tests
 SIZES = {"wide": (1280, 900), "phone": (360, 740)}
 SHORTEST_PX = 320  # of CSS; WCAG 2.2, 1.4.10: at this width nothing scrolls sideways
 SCHEMES: tuple[Literal["light", "dark"], ...] = ("light", "dark")
