@@ -208,9 +208,7 @@ def main() -> None:
     with tempfile.TemporaryDirectory() as folder, served(Path(folder)) as address, sync_playwright() as playwright:
         browser = playwright.chromium.launch(executable_path=path, args=ARGUMENTS)
         say(f"{PROJECTIONS} projections and their sound, in a window of {WIDTH} x {HEIGHT} pixels")
-        say(
-            f"chromium {browser.version}, headless, drawn by the processor; times between calls of requestAnimationFrame"
-        )
+        say(f"chromium {browser.version}, headless, drawn by the processor; frames by requestAnimationFrame")
         say(f"{platform.machine()}, {os.cpu_count()} cores, load of the machine {os.getloadavg()[0]:.1f}")
         views, rows = [], []
         for _ in range(OPENED):
