@@ -1,5 +1,6 @@
 """What axe-core says of a page: its rules of WCAG 2.0 to 2.2, A and AA, contrast among them."""
 
+from collections.abc import Sequence
 from importlib.resources import files
 from typing import Any
 
@@ -18,17 +19,21 @@ ASK_CONTRAST = """([alike, most]) => {
 MOST_ALIKE = 6  # of parts made from one template; contrast takes a millisecond for each element
 
 
-def told(answer: Any) -> list[str]:
-    """The grave violations of an answer of axe, in words."""
+def told(violations: Sequence[dict[str, Any]]) -> list[str]:
+    """Violations in words."""
     return [
         f"{one['id']} ({one['impact']}): {node['target']} {node['failureSummary']}"
-        for one in answer["violations"]
-        if one["impact"] in GRAVE
+        for one in violations
         for node in one["nodes"]
     ]
+
+
+def grave(answer: Any) -> list[str]:
+    """The grave violations of an answer of axe, in words."""
+    return told([one for one in answer["violations"] if one["impact"] in GRAVE])
 
 
 def faults_of(page: Page) -> list[str]:
     """The grave violations of all rules on a page as it stands, in the colours it has."""
     page.evaluate(AXE)
-    return told(page.evaluate(ASK_AXE, RULES)) + told(page.evaluate(ASK_CONTRAST, ["", MOST_ALIKE]))
+    return grave(page.evaluate(ASK_AXE, RULES)) + grave(page.evaluate(ASK_CONTRAST, ["", MOST_ALIKE]))

@@ -1,8 +1,6 @@
 """A browser that reaches one service alone, and fails a test for whatever goes wrong in a page."""
 
 import os
-import shutil
-import time
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -11,15 +9,11 @@ from typing import Literal
 import pytest
 from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Request, Route, sync_playwright
 
+from tests.browser.driving import ARGUMENTS, NOT_THERE, WITHIN_MS, chromium, wait_until
 from tests.browser.pages_list import ShownPage
 from tests.browser.served import Served, served
 
-ARGUMENTS = (
-    *("--headless", "--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run"),
-    *("--disable-background-networking", "--disable-component-update", "--disable-sync"),
-    "--autoplay-policy=no-user-gesture-required",
-)
-WITHIN_MS = 30_000.0
+__all__ = ["SCHEMES", "SHORTEST_PX", "SIZES", "Watch", "Window", "wait_until"]  # for tests
 SIZES = {"wide": (1280, 900), "phone": (360, 740)}
 SHORTEST_PX = 320  # of CSS; WCAG 2.2, 1.4.10: at this width nothing scrolls sideways
 SCHEMES: tuple[Literal["light", "dark"], ...] = ("light", "dark")
@@ -68,23 +62,14 @@ class Window:
         return self.open(shown.path, shown.ready)
 
 
-def wait_until(page: Page, holds: str) -> None:
-    """Wait until an expression of scripts holds. What playwright has for it needs an eval, which our pages forbid."""
-    until_s = time.monotonic() + WITHIN_MS / 1000
-    while not page.evaluate(holds):
-        assert time.monotonic() < until_s, f"it never holds that {holds}"
-        page.wait_for_timeout(50)
-
-
 # Of a package, not of the session: playwright's loop runs while it is open, and tests elsewhere run loops of their own.
 @pytest.fixture(scope="package")
 def browser() -> Iterator[Browser]:
-    path = shutil.which("chromium")
+    path = chromium()
     if path is None:
-        told = "chromium is not on the PATH (Debian: apt-get install chromium)"
         if os.environ.get("CI") == "true":
-            pytest.fail(told)
-        pytest.skip(f"NO PAGE IS TRIED IN A BROWSER: {told}")
+            pytest.fail(NOT_THERE)
+        pytest.skip(f"NO PAGE IS TRIED IN A BROWSER: {NOT_THERE}")
     with sync_playwright() as playwright:
         opened = playwright.chromium.launch(executable_path=path, args=ARGUMENTS)
         yield opened

@@ -5,7 +5,7 @@ from typing import Any
 
 from playwright.sync_api import Page
 
-from tests.browser.conftest import wait_until
+from tests.browser.driving import wait_until
 
 MOST_TABS = 300  # the form of a movement has some 200 fields
 DROP = """([bytes, names, at]) => {

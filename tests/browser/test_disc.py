@@ -7,7 +7,8 @@ from typing import Any
 import pytest
 from playwright.sync_api import Page
 
-from tests.browser.conftest import Window, wait_until
+from tests.browser.conftest import Window
+from tests.browser.driving import wait_until
 
 READY = "#rulings[data-ready]"
 MOST_APART_S = 0.020  # what a pluck may sound before or after it is seen

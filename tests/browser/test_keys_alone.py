@@ -5,8 +5,9 @@ from collections.abc import Callable
 from playwright.sync_api import Page
 
 from service.client.client import Client
-from tests.browser.conftest import Window, wait_until
+from tests.browser.conftest import Window
 from tests.browser.doing import focused, tab_to, tab_to_match
+from tests.browser.driving import wait_until
 from tests.service.shop import TUNE
 
 COUNT = "at/tracks/count"

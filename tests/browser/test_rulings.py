@@ -5,8 +5,9 @@ from typing import Any
 import pytest
 from playwright.sync_api import Locator, Page
 
-from tests.browser.conftest import Window, wait_until
+from tests.browser.conftest import Window
 from tests.browser.doing import focused, settings_of, tab_to
+from tests.browser.driving import wait_until
 
 READY = "#rulings[data-ready]"
 DONE = "document.querySelector('#rulings').getAttribute('aria-busy') === 'false'"

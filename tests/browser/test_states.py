@@ -8,8 +8,9 @@ from playwright.sync_api import Page
 
 from service.client.client import Client
 from tests.browser.access import faults_of
-from tests.browser.conftest import SCHEMES, SHORTEST_PX, Window, wait_until
+from tests.browser.conftest import SCHEMES, SHORTEST_PX, Window
 from tests.browser.doing import focused, tab_to_match, take_picture, unfold, widest
+from tests.browser.driving import wait_until
 
 READY = "#rulings[data-ready]"
 

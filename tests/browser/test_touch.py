@@ -6,8 +6,9 @@ from collections.abc import Callable, Sequence
 import pytest
 from playwright.sync_api import CDPSession, Page
 
-from tests.browser.conftest import Window, wait_until
+from tests.browser.conftest import Window
 from tests.browser.doing import turned_deg
+from tests.browser.driving import wait_until
 
 READY = "#rulings[data-ready]"
 STEPS = 8  # of a movement; a finger is seen some 60 times a second
