@@ -59,7 +59,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     @describes(proofs.FILE)
     @open_but_counted
     def give(text: str, disc: int, name: str) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
+        plan = _plan_shown(parts, links, text, disc)
         if name not in SHOWN:
             raise ProblemError(name="route-unknown", detail=f"a proof shows {', '.join(SHOWN)} alone")
         return file_response(parts, file_of(plan, disc, name), request)
@@ -83,15 +83,27 @@ def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: Hea
     @describes(hearings.PROOF_SOUND)
     @open_but_counted
     def give_sound(text: str, disc: int) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
+        plan = _plan_shown(parts, links, text, disc)
         return sound_response(shelf, *heard_of(parts, plan, disc), request)
 
     @routes.get("/<text>/files/<int:disc>/hearing.mid")
     @describes(hearings.PROOF_PLUCKS)
     @open_but_counted
     def give_plucks(text: str, disc: int) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
+        plan = _plan_shown(parts, links, text, disc)
         return plucks_response(shelf, *heard_of(parts, plan, disc), request)
+
+
+def _plan_shown(parts: Parts, links: ProofLinks, text: str, disc: int) -> PlanView:
+    """The plan of a proof that has such a disc; else nothing is told of what the plan holds.
+
+    Raises:
+        ProblemError, OrderUnknownError: The link shows nothing, or no such disc.
+    """
+    _, plan = proof_shown(parts, proof_of(links, text))
+    if disc not in {one["number"] for one in plan.told["discs"]}:
+        raise ProblemError(name="route-unknown", detail=f"this proof has no disc {disc}")
+    return plan
 
 
 def proof_page(text: str) -> str:
