@@ -54,7 +54,7 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
     @describes(proofs.FILE)
     @open_but_counted
     def give(text: str, disc: int, name: str) -> Response:
-        _, plan = proof_shown(parts, proof_of(links, text))
+        plan = _plan_shown(parts, links, text, disc)
         if name not in SHOWN:
             raise ProblemError(
                 name="route-unknown", detail=f"a proof shows {', '.join((*SHOWN, *HEARING_FILES))} alone"
@@ -76,26 +76,35 @@ def proof_routes(parts: Parts, links: ProofLinks, shelf: HearingShelf) -> Bluepr
 
 
 def _add_hearings(routes: Blueprint, parts: Parts, links: ProofLinks, shelf: HearingShelf) -> None:
-    def plan_of(text: str) -> PlanView:
-        return proof_shown(parts, proof_of(links, text))[1]
-
     @routes.get("/<text>/files/<int:disc>/hearing.wav")
     @describes(hearings.PROOF_SOUND)
     @open_but_counted
     def give_sound(text: str, disc: int) -> Response:
-        return sound_response(shelf, heard_of(parts, partial(plan_of, text), disc), request)
+        return sound_response(shelf, heard_of(parts, partial(_plan_shown, parts, links, text, disc), disc), request)
 
     @routes.get("/<text>/files/<int:disc>/hearing.mid")
     @describes(hearings.PROOF_PLUCKS)
     @open_but_counted
     def give_plucks(text: str, disc: int) -> Response:
-        return plucks_response(shelf, heard_of(parts, partial(plan_of, text), disc), request)
+        return plucks_response(shelf, heard_of(parts, partial(_plan_shown, parts, links, text, disc), disc), request)
 
 
 def _disc_shown(text: str, disc: Mapping[str, Any]) -> dict[str, Any]:
     base = f"{proof_address(text)}/files/{disc['number']}"
     files = {name: f"{base}/{name}" for name in (*SHOWN, *HEARING_FILES)}
     return {**{name: disc[name] for name in ("number", "of", "asked_count", "kept_count")}, "files": files}
+
+
+def _plan_shown(parts: Parts, links: ProofLinks, text: str, disc: int) -> PlanView:
+    """The plan of a proof that has such a disc; else nothing is told of what the plan holds.
+
+    Raises:
+        ProblemError, OrderUnknownError: The link shows nothing, or no such disc.
+    """
+    _, plan = proof_shown(parts, proof_of(links, text))
+    if disc not in {one["number"] for one in plan.told["discs"]}:
+        raise ProblemError(name="route-unknown", detail=f"this proof has no disc {disc}")
+    return plan
 
 
 def proof_page(text: str) -> str:

@@ -159,6 +159,16 @@ def test_a_customer_gets_no_way_into_the_shop(shop: Shop) -> None:
     assert answer.headers["Cache-Control"] == "private, no-cache"
 
 
+@pytest.mark.parametrize("name", ["disc.svg", "report.json", "hearing.wav", "hearing.mid", "making.json"])
+def test_a_disc_that_a_proof_has_not_tells_nothing_of_the_files_there_are(shop: Shop, name: str) -> None:
+    path = link_to(shop, shop.ready()).replace("/proof/", "/v1/proofs/")
+
+    told = problem_of(shop.http.get(f"{path}/files/2/{name}"), "route-unknown")
+
+    assert told["detail"] == "this proof has no disc 2"
+    assert "known_files" not in told
+
+
 def test_a_program_with_the_link_is_led_to_what_programs_read(shop: Shop) -> None:
     path = link_to(shop, shop.ready())
 
