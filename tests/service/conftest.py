@@ -184,14 +184,20 @@ def pytest_configure(config: pytest.Config) -> None:
 
 
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
-    """Leave to one database what says nothing of databases."""
+    """Leave to one database what says nothing of databases; whoever asks for a case alone gets it."""
     if THOROUGH:
         return
-    left = [item for item in items if _is_left_to_the_other(item)]
+    kept = [item for item in items if not _is_left_to_the_other(item)]
+    tried = {_function_of(item) for item in kept}
+    left = [item for item in items if _is_left_to_the_other(item) and _function_of(item) in tried]
     if left:
         config.hook.pytest_deselected(items=left)
         leaving = set(left)
         items[:] = [item for item in items if item not in leaving]
+
+
+def _function_of(item: pytest.Item) -> str:
+    return item.nodeid.partition("[")[0]
 
 
 def _is_left_to_the_other(item: pytest.Item) -> bool:
