@@ -17,7 +17,7 @@ from tests.faults.fleet import Fleet, Stream, hold_database, wait_for, wait_unti
 from tests.faults.judging import assert_all_planned_once
 from tests.faults.ordering import PlansHere, assert_planned_once, look, place, states, tune_called
 from tests.faults.server import own_server
-from tests.service.conftest import environment_of, new_database, parts_of, sqlite_alone
+from tests.service.conftest import environment_of, new_database, parts_of, postgresql_first, sqlite_alone, sqlite_first
 from tests.service.shop import open_shop
 
 # Short leases, so that what was lost is taken up within the patience of a test.
@@ -81,6 +81,7 @@ def test_every_order_is_planned_once_though_the_database_is_cut_off(tmp_path: Pa
         assert_all_planned_once(parts, stream.tunes, tmp_path)
 
 
+@sqlite_first("what becomes of a process")
 def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_planned(
     tmp_path: Path, database_url: str | None
 ) -> None:
@@ -105,6 +106,7 @@ def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_pl
         assert_all_planned_once(parts, tunes, tmp_path)
 
 
+@postgresql_first("a worker cut off from the others, as on a machine of its own")
 def test_what_a_worker_planned_that_slept_past_its_lease_is_thrown_away(
     tmp_path: Path, database_url: str | None
 ) -> None:

@@ -6,7 +6,8 @@ one: nothing names another. Tests of what one database alone has say so with `sq
 A test in a folder of ABOVE_THE_STORE that goes through a table of cases goes through all of them on SQLite, and on
 PostgreSQL through the first: what it holds of each case is decided before the store is asked or after. Where a case is
 about what a database can hold or be asked, the test says so with `each_case_on_both`. A test that takes long and says
-nothing of a database is left to SQLite with `sqlite_first`. TESTS=thorough runs everything on both.
+nothing of a database is left to SQLite with `sqlite_first`, or to PostgreSQL with `postgresql_first`.
+TESTS=thorough runs everything on both.
 """
 
 import atexit
@@ -19,6 +20,7 @@ import warnings
 from collections.abc import Iterator
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 import pytest
 from sqlalchemy import create_engine, text
@@ -165,29 +167,51 @@ def sqlite_first(because: str) -> pytest.MarkDecorator:
     return pytest.mark.sqlite_first(because)
 
 
+def postgresql_first(because: str) -> pytest.MarkDecorator:
+    """Marks a long test that is run on SQLite in the thorough run alone.
+
+    Args:
+        because: What it is about.
+    """
+    return pytest.mark.postgresql_first(because)
+
+
 def pytest_configure(config: pytest.Config) -> None:
     """Name the marks."""
     config.addinivalue_line("markers", "each_case_on_both(because): every case of it is run on both databases")
-    config.addinivalue_line("markers", "sqlite_first(because): run on PostgreSQL by TESTS=thorough alone")
+    for first in DATABASES:
+        config.addinivalue_line("markers", f"{first}_first(because): run on the other database by TESTS=thorough alone")
 
 
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
-    """Leave to SQLite what says nothing of a database."""
+    """Leave to one database what says nothing of databases; whoever asks for a case alone gets it."""
     if THOROUGH:
         return
-    left = [item for item in items if _is_left_to_sqlite(item)]
+    kept = [item for item in items if not _is_left_to_the_other(item)]
+    tried = {_function_of(item) for item in kept}
+    left = [item for item in items if _is_left_to_the_other(item) and _function_of(item) in tried]
     if left:
         config.hook.pytest_deselected(items=left)
         leaving = set(left)
         items[:] = [item for item in items if item not in leaving]
 
 
-def _is_left_to_sqlite(item: pytest.Item) -> bool:
+def _function_of(item: pytest.Item) -> str:
+    return item.nodeid.partition("[")[0]
+
+
+def _is_left_to_the_other(item: pytest.Item) -> bool:
     case = getattr(item, "callspec", None)
-    if case is None or "postgresql" not in (case.params.get(name) for name in ("database_url", "module_database_url")):
+    if case is None:
         return False
-    if item.get_closest_marker("sqlite_first") is not None:
-        return True
+    database = case.params.get("database_url") or case.params.get("module_database_url")
+    firsts = [first for first in DATABASES if item.get_closest_marker(f"{first}_first") is not None]
+    if firsts:
+        return database not in (None, *firsts)
+    return database == "postgresql" and _is_a_further_case_above_the_store(item, case)
+
+
+def _is_a_further_case_above_the_store(item: pytest.Item, case: Any) -> bool:
     if not any(item.path.is_relative_to(folder) for folder in ABOVE_THE_STORE):
         return False
     if "database_url" not in case.params or item.get_closest_marker("each_case_on_both") is not None:

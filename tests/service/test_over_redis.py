@@ -17,10 +17,12 @@ from redis import Redis
 from service.background.queue import AWAY_S, Queue
 from service.client.client import Client
 from tests.service.api.running import Running, running
+from tests.service.conftest import postgresql_first
 from tests.service.hooks.receivers import Receiver, listening
 from tests.service.redis_server import RedisServer, own_redis
 from tests.service.shop import TUNE
 
+pytestmark = postgresql_first("what several machines share")
 READY = frozenset({"ready"})
 WITHIN_S = 120.0
 

@@ -21,7 +21,7 @@ from layout.read_back import Reading, read_back
 from layout.write import write_dxf
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
-from tests.thorough import tried
+from tests.thorough import THOROUGH, tried
 
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
 AHEAD_LASER = cutter_with({"fold/fold_side": "ahead"})
@@ -30,6 +30,7 @@ ROUND_LASER = cutter_with({"fold/relief_ends": "round", "fold/relief_width_mm": 
 ROUND_SLOTS = movement_with(
     {"projection": {"kind": "slot", "width_mm": 2.0, "length_mm": 2.0}}, SHIPPED[2].model_dump(exclude_none=True)
 )
+MANY = 300 if THOROUGH else 100  # projections
 CUTTERS = [LASER, PRESS, STAR_SIDE_LASER, AHEAD_LASER, OPEN_LASER, ROUND_LASER]
 CUTTER_NAMES = ["laser", "press", "star side", "fold ahead", "open slit", "round reliefs"]
 
@@ -46,7 +47,7 @@ def assert_same_disc(reading: Reading, disc: Disc, *, within_rad: float = 1e-9) 
     "cutter", CUTTERS, ids=["laser", "press", "star side", "fold ahead", "open slit", "round reliefs"]
 )
 def test_a_drawing_gives_back_track_and_angle_of_every_projection(movement: Movement, cutter: Cutter) -> None:
-    disc = random_disc(movement, cutter, count=300)
+    disc = random_disc(movement, cutter, count=MANY)
 
     reading = read_back(bytes_of(disc_document(disc)), movement, cutter)
 
@@ -75,7 +76,7 @@ def test_any_disc_that_is_drawn_is_read_back(seed: int, count: int, which: int, 
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
 @pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
 def test_the_files_this_program_writes_play_what_was_placed(movement: Movement, cutter: Cutter) -> None:
-    disc = random_disc(movement, cutter, count=300)
+    disc = random_disc(movement, cutter, count=MANY)
     order = np.lexsort((disc.edge_angle_rad, disc.track_index))
 
     reading = read_back(written(disc), movement, cutter)
@@ -98,7 +99,7 @@ SLIVER_CUTTERS = {
 @pytest.mark.parametrize("changes", SLIVER_CUTTERS.values(), ids=SLIVER_CUTTERS)
 def test_a_cutter_with_a_sliver_of_a_slit_or_relief_reads_back(changes: dict[str, float]) -> None:
     cutter = cutter_with({**changes, "layers": {"SLITS": {"name": "Defpoints", "colour": 1}}})
-    disc = random_disc(SHIPPED[0], cutter, count=300)
+    disc = random_disc(SHIPPED[0], cutter, count=MANY)
 
     reading = read_back(written(disc), SHIPPED[0], cutter)
 
@@ -107,7 +108,7 @@ def test_a_cutter_with_a_sliver_of_a_slit_or_relief_reads_back(changes: dict[str
 
 def test_a_slot_that_is_all_but_round_reads_back() -> None:
     movement = movement_with({"projection/length_mm": 1.3000001}, SHIPPED[2].model_dump(exclude_none=True))
-    disc = random_disc(movement, count=300)
+    disc = random_disc(movement, count=MANY)
 
     assert_same_disc(read_back(written(disc), movement, LASER), disc, within_rad=1e-5)
 

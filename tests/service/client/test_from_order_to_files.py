@@ -9,7 +9,9 @@ import pytest
 from service.client.calling import ProblemError
 from service.client.client import Client, DamagedFileError
 from tests.service.api.running import Running, running
+from tests.service.conftest import sqlite_first
 
+pytestmark = sqlite_first("a client, which sees no database")
 DEMO = files("service.demo").joinpath("tune.mid").read_bytes()
 DECIDED = frozenset({"ready", "attention", "failed"})
 WITHIN_S = 120.0
