@@ -11,9 +11,9 @@ import pytest
 from playwright.sync_api import Page
 
 from service.client.client import Client
-from tests.browser.conftest import SCHEMES, SIZES, Window, wait_until
+from tests.browser.access import faults_of
+from tests.browser.conftest import SCHEMES, SHORTEST_PX, SIZES, Window, wait_until
 from tests.browser.served import ASKED, WITHIN_S, Served
-from tests.browser.test_every_page import ASK_AXE, ASK_CONTRAST, AXE, GRAVE, MOST_ALIKE, RULES, SHORTEST_PX, told
 from tests.service.shop import TUNE
 
 HALF_SPEED = {"speed": {"mode": "factor", "factor": 0.5}}  # twice a turn: an error on one disc, no fault on two
@@ -196,7 +196,7 @@ def test_a_released_order_is_ordered_again_and_the_page_goes_to_the_new_one(sign
     page.fill("#repeat-reference", "W-2006")
     page.click("#repeating button")
 
-    wait_until(page, f"location.pathname.startsWith('/orders/') && !location.pathname.endsWith('{placed.order_id}')")
+    page.wait_for_url(lambda url: "/orders/" in url and placed.order_id not in url)
     page.wait_for_selector("#state")
     assert page.inner_text("h1") == "W-2006"
     assert "3 of each disc" in page.inner_text("[data-part=facts]")
@@ -289,11 +289,8 @@ def test_with_everything_unfolded_a_page_is_accessible_and_fits_a_phone(
     page = window.open(faulty.proof, READY) if which == "proof" else order_page(window, faulty)
 
     page.evaluate("document.querySelectorAll('details').forEach(one => { one.open = true; })")
-    page.evaluate(AXE)
-    found = page.evaluate(ASK_AXE, RULES)["violations"]
-    found += page.evaluate(ASK_CONTRAST, ["", MOST_ALIKE])["violations"]
 
-    assert told([one for one in found if one["impact"] in GRAVE]) == []
+    assert faults_of(page) == []
     for width in (SIZES["phone"][0], SHORTEST_PX):
         page.set_viewport_size({"width": width, "height": 740})
         assert page.evaluate("document.documentElement.scrollWidth") <= width
