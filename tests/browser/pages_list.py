@@ -53,6 +53,7 @@ PAGES = (
         path="/movements/tarnlight-17/edit",
         ready="form[data-ready]",
         signed_in=True,
+        alike="#form details[data-pointer^='/teeth/']",
     ),
     ShownPage(
         name="movement-add", route="/movements/add", path="/movements/add", ready="form[data-ready]", signed_in=True

@@ -15,18 +15,21 @@ MOST_APART_S = 0.020  # what a pluck may sound before or after it is seen
 PARTS_OF_THE_TURN = (0.05, 0.3, 0.55, 0.8, 0.95)
 LISTEN_MS = 1200  # at each place
 # At each frame: what the page draws, and what the sound says at the same moment. The sound's own time comes in steps of
-# its buffers; of each step the first frame that sees it is kept, where it is least stale.
+# its buffers; of each step the first frame that sees it is kept, where it is least stale. It is as stale as this frame
+# comes after the one before: where a busy machine keeps the browser waiting, a frame tells nothing.
 LISTEN = """(during_ms) => new Promise((done) => {
   const stage = document.querySelector("#stage");
   const sound = document.querySelector("#sound");
   const seen = [];
   const from_ms = performance.now();
   let last_s = null;
-  const look = () => {
+  let last_ms = -Infinity;
+  const look = (now_ms) => {
     const sound_s = sound.currentTime;
-    if (sound_s !== last_s && !sound.paused && !sound.seeking && sound.readyState >= 3)
+    if (sound_s !== last_s && !sound.paused && !sound.seeking && sound.readyState >= 3 && now_ms - last_ms < 20)
       seen.push([sound_s, Number(stage.dataset.soundS), Number(stage.dataset.turnedDeg)]);
     last_s = sound_s;
+    last_ms = now_ms;
     if (performance.now() - from_ms < during_ms) requestAnimationFrame(look);
     else done(seen);
   };

@@ -7,9 +7,9 @@ import pytest
 from playwright.sync_api import Page
 
 from service.client.client import Client
-from tests.browser.access import faults_of
+from tests.browser.access import contrast_faults_of, faults_of
 from tests.browser.conftest import SCHEMES, SHORTEST_PX, Window
-from tests.browser.doing import focused, tab_to_match, take_picture, unfold, widest
+from tests.browser.doing import focused, tab_to_match, take_picture, widest
 from tests.browser.driving import wait_until
 
 READY = "#rulings[data-ready]"
@@ -85,7 +85,6 @@ def sign_in_refused(window: Window) -> Page:
 
 def movement_form_with_faults(window: Window) -> Page:
     page = window.open("/movements/tarnlight-17/edit", "form[data-ready]")
-    unfold(page)
     page.fill("[id='at/tracks/count']", "0")
     page.wait_for_selector("#form [aria-invalid=true]")
     return page
@@ -119,10 +118,12 @@ def test_a_page_in_another_state_keeps_the_rules_of_access_and_fits_a_phone(
     window.watch.bears += BORNE
     page = come_to(window)
 
+    faults = faults_of(page)
     for scheme in SCHEMES:
         page.emulate_media(color_scheme=scheme)
         take_picture(page, pictures / f"{name}-wide-{scheme}.png")
-        assert faults_of(page) == [], scheme
+        faults += [f"{scheme}: {fault}" for fault in contrast_faults_of(page)]
+    assert faults == []
     page.set_viewport_size({"width": SHORTEST_PX, "height": 740})
     wait_until(page, f"innerWidth === {SHORTEST_PX}")
     assert page.evaluate("document.documentElement.scrollWidth") <= SHORTEST_PX, widest(page)
@@ -152,7 +153,7 @@ def test_who_has_no_orders_yet_is_led_on_to_the_first(open_window: Callable[...,
     page = window.open("/orders")
 
     assert page.locator("table").count() == 0
-    assert faults_of(page) == []
+    assert faults_of(page) + contrast_faults_of(page) == []
     tab_to_match(page, "main a[href='/new']")
     page.keyboard.press("Enter")
     page.wait_for_url("**/new")
