@@ -14,6 +14,7 @@ from tests.layout.examples import LASER, PRESS, cutter_with, movement_with
 from tests.outside.asking_second import SecondOpinion, second_opinion
 from tests.outside.pieces import public_domain_piece
 from tests.outside.posed import posed, spacing_on
+from tests.thorough import THOROUGH
 
 # Every piece on a disc as a whole, however fast.
 FIT = {"mode": "fit", "least": 0.25, "most": 8}
@@ -56,6 +57,7 @@ PLAIN = [
     ("wieck polonaise 1", "tarnlight-17"),
     ("wieck polonaise 4", "tarnlight-17"),
 ]
+TRIED = PLAIN if THOROUGH else PLAIN[::2]
 MOVED = [
     ("bach chorale 66.6", "tarnlight-17", "all"),
     ("schumann song", "fernhollow-31", "all"),
@@ -114,7 +116,7 @@ def problem_of(name: str, movement: Movement, cutter: Cutter, settings: Settings
 
 
 @pytest.mark.parametrize(
-    ("name", "movement_id", "octave_moves"), [(name, movement_id, "none") for name, movement_id in PLAIN] + MOVED
+    ("name", "movement_id", "octave_moves"), [(name, movement_id, "none") for name, movement_id in TRIED] + MOVED
 )
 def test_on_real_pieces_the_best_choice_is_worth_what_the_second_formulation_says(
     name: str, movement_id: str, octave_moves: str, second: SecondOpinion

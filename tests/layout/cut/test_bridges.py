@@ -23,7 +23,7 @@ from layout.write import write_dxf
 from tests.layout.cut.test_blank import HOLE, NOTCH
 from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
-from tests.thorough import tried
+from tests.thorough import pairs_of, tried
 
 KERF_MM = 0.12  # of the shipped laser
 BRIDGES = {"count": 4, "width_mm": 0.8}
@@ -60,8 +60,7 @@ def beam_lines(disc: Disc, cutter: Cutter) -> list[shapely.LineString]:
     return [shapely.LineString([(p.x, p.y) for p in paths.make_path(one).flattening(1e-4)]) for one in found]
 
 
-@pytest.mark.parametrize("movement", [PLAIN, NOTCHED, *SHIPPED], ids=lambda movement: movement.id)
-@pytest.mark.parametrize("cutter", CUTTERS.values(), ids=CUTTERS)
+@pytest.mark.parametrize(("movement", "cutter"), pairs_of([PLAIN, NOTCHED, *SHIPPED], CUTTERS))
 def test_as_many_bridges_stand_as_wide_as_asked_for(movement: Movement, cutter: Cutter) -> None:
     assert cutter.bridges is not None
 
@@ -111,8 +110,7 @@ def test_every_stretch_between_bridges_is_pierced_and_the_bridges_are_not_cut() 
     assert whole.cut_length_mm - held.cut_length_mm == pytest.approx(4 * 2 * math.asin(0.46 / 120) * 120)
 
 
-@pytest.mark.parametrize("movement", [PLAIN, NOTCHED, *SHIPPED], ids=lambda movement: movement.id)
-@pytest.mark.parametrize("cutter", CUTTERS.values(), ids=CUTTERS)
+@pytest.mark.parametrize(("movement", "cutter"), pairs_of([PLAIN, NOTCHED, *SHIPPED], CUTTERS))
 def test_a_drawing_with_bridges_reads_back(movement: Movement, cutter: Cutter) -> None:
     disc = random_disc(movement, cutter, count=20)
     plan = plan_cuts(disc, title="tune", fingerprint="0123456789abcdef", not_good=None)

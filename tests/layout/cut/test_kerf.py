@@ -20,7 +20,7 @@ from layout.write import write_dxf
 from tests.layout.cut.test_blank import HOLE, NOTCH, SLOT, traced
 from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import random_disc
-from tests.thorough import tried
+from tests.thorough import pairs_of, tried
 
 KERF_MM = 0.12  # of the shipped laser
 HALF_MM = KERF_MM / 2
@@ -119,9 +119,12 @@ def test_outlines_are_where_another_library_puts_them(movement: Movement, cutter
     assert compared >= 8 + 1 + 1  # the projections, the feature slot and the rim
 
 
-@pytest.mark.parametrize("movement", [FEATURED, *SHIPPED, *FEATURED_SHIPPED], ids=lambda movement: movement.id)
 @pytest.mark.parametrize(
-    "cutter", [COMPENSATED, STAR_SIDE, ROUND_RELIEFS, OPEN_SLITS], ids=["laser", "star side", "round", "open"]
+    ("movement", "cutter"),
+    pairs_of(
+        [FEATURED, *SHIPPED, *FEATURED_SHIPPED],
+        {"laser": COMPENSATED, "star side": STAR_SIDE, "round": ROUND_RELIEFS, "open": OPEN_SLITS},
+    ),
 )
 def test_a_compensated_drawing_reads_back_as_the_disc_it_was_drawn_from(movement: Movement, cutter: Cutter) -> None:
     disc = random_disc(movement, cutter, count=100)

@@ -27,6 +27,7 @@ from layout.write import write_dxf
 from tests.layout.examples import LASER, PLAIN, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
 from tests.outside.gdal_drawing import layers_of
+from tests.thorough import pairs_of
 
 KERF_MM = 0.12  # of the shipped laser
 SLUGS = {"count": 2, "width_mm": 0.2, "least_slug_mm": 1.5}
@@ -126,8 +127,7 @@ def test_the_area_of_a_bridge_is_its_width_times_the_kerf() -> None:
     )
 
 
-@pytest.mark.parametrize("cutter", CUTTERS.values(), ids=CUTTERS)
-@pytest.mark.parametrize("movement", MOVEMENTS, ids=lambda movement: f"{movement.id} {movement.turns}")
+@pytest.mark.parametrize(("movement", "cutter"), pairs_of(MOVEMENTS, CUTTERS))
 def test_a_drawing_with_held_slugs_reads_back_as_the_same_disc(movement: Movement, cutter: Cutter) -> None:
     disc = random_disc(movement, cutter, count=20)
 

@@ -21,7 +21,7 @@ from layout.read_back import Reading, read_back
 from layout.write import write_dxf
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.layout.read_back.drawings import bytes_of, disc_document, random_disc
-from tests.thorough import THOROUGH, tried
+from tests.thorough import THOROUGH, pairs_of, tried
 
 STAR_SIDE_LASER = cutter_with({"drawn_from": "star-side"})
 AHEAD_LASER = cutter_with({"fold/fold_side": "ahead"})
@@ -33,6 +33,7 @@ ROUND_SLOTS = movement_with(
 MANY = 300 if THOROUGH else 100  # projections
 CUTTERS = [LASER, PRESS, STAR_SIDE_LASER, AHEAD_LASER, OPEN_LASER, ROUND_LASER]
 CUTTER_NAMES = ["laser", "press", "star side", "fold ahead", "open slit", "round reliefs"]
+NAMED = dict(zip(CUTTER_NAMES, CUTTERS, strict=True))
 
 
 def assert_same_disc(reading: Reading, disc: Disc, *, within_rad: float = 1e-9) -> None:
@@ -42,9 +43,8 @@ def assert_same_disc(reading: Reading, disc: Disc, *, within_rad: float = 1e-9) 
     assert reading.disc.edge_angle_rad == pytest.approx(disc.edge_angle_rad[order], abs=within_rad)
 
 
-@pytest.mark.parametrize("movement", [*SHIPPED, PLAIN, ROUND_SLOTS], ids=lambda movement: movement.title)
 @pytest.mark.parametrize(
-    "cutter", CUTTERS, ids=["laser", "press", "star side", "fold ahead", "open slit", "round reliefs"]
+    ("movement", "cutter"), pairs_of([*SHIPPED, PLAIN, ROUND_SLOTS], dict(zip(CUTTER_NAMES, CUTTERS, strict=True)))
 )
 def test_a_drawing_gives_back_track_and_angle_of_every_projection(movement: Movement, cutter: Cutter) -> None:
     disc = random_disc(movement, cutter, count=MANY)
