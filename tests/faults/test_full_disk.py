@@ -37,10 +37,10 @@ def test_what_finds_no_room_is_told_so_and_is_taken_later_and_nothing_is_lost(tm
         try:
             receiver.secret = make_hook(asking, receiver.url)
             refused, seen = place_around_a_full_disk(asking, orders, disk)
-            wait_for(lambda: not open_orders(parts), within_s=90)
+            wait_for(lambda: not open_orders(parts), within_s=240)
             for order in orders[::2]:
                 order.released = order.release(asking)
-            wait_for(lambda: not untold(parts), within_s=90)
+            wait_for(lambda: not untold(parts), within_s=240)
         finally:
             codes = served.stop()
         faults = [*answers.faults, *receiver.faults, *files_judged(disk)]

@@ -55,7 +55,7 @@ def test_each_pair_is_one_order_though_workers_are_killed_while_they_open_the_ru
             mid_run += order_count(parts) < PAIRS
             time.sleep(chance.uniform(0.0, 0.1))
 
-        wait_for(lambda: finished(parts, run_id), within_s=90)
+        wait_for(lambda: finished(parts, run_id), within_s=240)
         assert fleet.stop() == [0, 0]
 
         with parts.store.reading() as session:

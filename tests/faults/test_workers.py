@@ -54,7 +54,7 @@ def test_every_order_is_planned_once_though_workers_are_killed_and_the_database_
             fleet.kill_one(chance)
         hold_database(parts, 3.0)  # longer than a lease
         stream.wait()
-        wait_until_none_is_open(parts, list(stream.tunes), within_s=90)
+        wait_until_none_is_open(parts, list(stream.tunes), within_s=240)
         codes = fleet.stop()
 
         assert fleet.kills >= KILLS - 1  # one may have ended before it was hit
@@ -75,7 +75,7 @@ def test_every_order_is_planned_once_though_the_database_is_cut_off(tmp_path: Pa
         fleet.kill_one(chance)
         server.cut_for(3.0)
         stream.wait()
-        wait_until_none_is_open(parts, list(stream.tunes), within_s=90)
+        wait_until_none_is_open(parts, list(stream.tunes), within_s=240)
         fleet.stop()
 
         assert_all_planned_once(parts, stream.tunes, tmp_path)
@@ -94,7 +94,7 @@ def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_pl
         queue.close()
 
         fleet = Fleet(environment, tmp_path / "log", workers=1)
-        wait_until_none_is_open(parts, [deadly, *tunes], within_s=90)
+        wait_until_none_is_open(parts, [deadly, *tunes], within_s=240)
         fleet.stop()
 
         seen = look(parts, deadly)

@@ -24,7 +24,7 @@ from tests.faults.ordering import PlansHere, assert_planned_once, look, place, t
 from tests.service.shop import TUNE, open_shop
 
 PLANNER = "tests.faults.planner"
-WITHIN_S = 40.0
+WITHIN_S = 120.0
 
 
 @contextmanager
