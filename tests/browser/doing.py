@@ -35,7 +35,7 @@ WIDEST = """() => {
     .filter((one) => one.getBoundingClientRect().right > document.documentElement.clientWidth + 0.5)
     .filter((one) => !held(one.parentElement)).slice(0, 5).map((one) => one.outerHTML.slice(0, 120));
 }"""
-TALLEST_PX = 6000  # of a picture: the page of reference is twenty times as tall, and takes that long to be drawn
+TALLEST_PX = 6000  # of a picture: the page of reference is twenty times as tall
 
 
 def unfold(page: Page) -> int:
@@ -49,9 +49,16 @@ def widest(page: Page) -> Any:
 
 
 def take_picture(page: Page, path: Path) -> None:
-    """A picture of the page, or of its beginning where it is very tall."""
-    wide, high = page.evaluate("[document.documentElement.clientWidth, document.documentElement.scrollHeight]")
-    page.screenshot(path=path, full_page=True, clip={"x": 0, "y": 0, "width": wide, "height": min(high, TALLEST_PX)})
+    """A picture of the page, or of its beginning where it is very tall.
+
+    In a window as tall as the picture: one past the window's edge makes the browser paint all of a page.
+    """
+    size = page.viewport_size
+    assert size is not None
+    high = page.evaluate("document.documentElement.scrollHeight")
+    page.set_viewport_size({"width": size["width"], "height": min(high, TALLEST_PX)})
+    page.screenshot(path=path)
+    page.set_viewport_size(size)
 
 
 def drop(page: Page, tune: bytes, *names: str, at: str = "#drop") -> None:
