@@ -8,8 +8,8 @@ from typing import Any
 import pytest
 from playwright.sync_api import Page
 
-from tests.browser.conftest import SCHEMES, SIZES, Window, wait_until
-from tests.browser.test_every_page import ASK_AXE, ASK_CONTRAST, AXE, GRAVE, RULES, SHORTEST_PX, told
+from tests.browser.access import faults_of
+from tests.browser.conftest import SCHEMES, SHORTEST_PX, SIZES, Window, wait_until
 from tests.service.shop import TUNE
 
 READY = "#new-disc[data-ready]"
@@ -191,9 +191,7 @@ def test_with_all_unfolded_with_faults_and_rulings_the_page_breaks_no_rule_of_ac
     page.wait_for_selector("#discs-fault:not(:empty)")
 
     page.screenshot(path=pictures / f"new-unfolded-{size}-{scheme}.png", full_page=True)
-    page.evaluate(AXE)
-    found = page.evaluate(ASK_AXE, RULES)["violations"] + page.evaluate(ASK_CONTRAST, ["", 0])["violations"]
-    assert told([one for one in found if one["impact"] in GRAVE]) == []
+    assert faults_of(page) == []
     if size == "phone":
         page.set_viewport_size({"width": SHORTEST_PX, "height": 740})
         assert page.evaluate("document.documentElement.scrollWidth") <= SHORTEST_PX
