@@ -196,7 +196,7 @@ def test_a_released_order_is_ordered_again_and_the_page_goes_to_the_new_one(sign
     page.fill("#repeat-reference", "W-2006")
     page.click("#repeating button")
 
-    wait_until(page, f"location.pathname.startsWith('/orders/') && !location.pathname.endsWith('{placed.order_id}')")
+    page.wait_for_url(lambda url: "/orders/" in url and not url.endswith(placed.order_id))
     page.wait_for_selector("#state")
     assert page.inner_text("h1") == "W-2006"
     assert "3 of each disc" in page.inner_text("[data-part=facts]")
