@@ -329,7 +329,9 @@ def read_movement(text: str | bytes) -> Movement:
     try:
         movement = check_document(Movement, plain, document="movement", union_tags=_UNION_TAGS)
     except DocumentError as error:
-        raise (_as_spread(error) if is_spread else error) from error
+        if not is_spread:
+            raise
+        raise _as_spread(error) from error
     movement._stated.update(stated)
     return movement
 

@@ -168,8 +168,10 @@ def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Stat
             character, or a worth that is not valid. RFC 8259 has neither NaN nor infinities.
     """
     try:
+        # json alone would take bytes in UTF-16 and UTF-32 too, which no reader after us expects.
+        words = text.decode("utf-8-sig", "surrogatepass") if isinstance(text, bytes) else text
         value = json.loads(
-            text, parse_constant=_no_number, parse_int=_whole, parse_float=_real, object_pairs_hook=_without_doubles
+            words, parse_constant=_no_number, parse_int=_whole, parse_float=_real, object_pairs_hook=_without_doubles
         )
         plain, stated = _take_apart(value, "", MOST_LEVELS)
     except (ValueError, RecursionError) as error:

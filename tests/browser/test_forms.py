@@ -210,6 +210,17 @@ def test_teeth_copied_from_a_spreadsheet_are_pasted_with_their_names_and_without
     assert page.inner_text("#said") == "Rows pasted: 2."
 
 
+def test_columns_that_are_pasted_past_the_last_one_are_told_and_not_lost_in_silence(signed_in: Window) -> None:
+    page = form_of(signed_in, "/movements/tarnlight-17/edit")
+    before = document(page)["teeth"][0]
+
+    paste(page, "/teeth/0/pitch", "\t".join(["F#4", *["1"] * 20]))
+
+    assert document(page)["teeth"][0]["pitch"] == "F#4" != before["pitch"]
+    told = page.inner_text("#said")  # pitch is the last of the columns shown
+    assert told.startswith("Rows pasted: 1. Columns not taken: 20, past the last one shown.")
+
+
 def test_a_list_of_tracks_is_pasted_by_its_radii(signed_in: Window) -> None:
     page = form_of(signed_in, "/movements/tarnlight-17/edit")
     page.locator('[data-pointer="/tracks"] .either select').select_option(index=0)

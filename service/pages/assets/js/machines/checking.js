@@ -11,8 +11,8 @@ const isWorth = (shape, value) =>
   shape.takesWorth && isObject(value) && "value" in value && Object.keys(value).every((name) => name in shape.worth);
 const seen = (value) => (typeof value === "string" ? value : JSON.stringify(value));
 
-// Every fault of a value, each { path, why }; `units` are those of fields by their names.
-export function faultsOf(shape, value, units, path = []) {
+// Every fault of a value, each { path, why }; `units` are those of fields by their names, where they are told.
+export function faultsOf(shape, value, units = {}, path = []) {
   if (value === null && shape.takesNull) return [];
   if (isWorth(shape, value)) return worthFaults(shape, value, units, path);
   const judge = { fields: inFields, named: inNamed, list: inList, row: inList, either: inEither }[shape.kind];

@@ -137,7 +137,7 @@ function fromSpreadsheet(table, event) {
   event.preventDefault();
   const { path, shape, desk, fields, shown, values } = table;
   const place = placeOf(event.target);
-  const { rows, columns } = pasted(copied, { fields, shown, from: event.target.dataset.column, wordsOf });
+  const { rows, columns, lost } = pasted(copied, { fields, shown, from: event.target.dataset.column, wordsOf });
   const most = (shape.schema.maxItems ?? Infinity) - place;
   const taken = rows.slice(0, most);
   const made = [...values];
@@ -153,6 +153,6 @@ function fromSpreadsheet(table, event) {
   });
   desk.change(path, made);
   const words = rows.length > most ? worded("pasted_some", { count: taken.length, all: rows.length }) : worded("pasted", { count: taken.length });
-  say(words);
+  say(lost > 0 ? `${words} ${worded("columns_lost", { count: lost })}` : words);
   table.redraw(place, columns[0].name);
 }
