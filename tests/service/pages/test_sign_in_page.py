@@ -65,6 +65,17 @@ def test_a_key_that_is_not_in_force_is_told_beside_its_field_and_the_way_on_is_k
     assert back_of(page) == "/orders"
 
 
+def test_a_form_over_the_limit_of_bodies_is_told_of_and_offered_again(shop: Shop) -> None:
+    most = shop.parts.settings.limits.upload_bytes
+
+    answer = shop.http.post("/sign-in", data={"key": "x" * most, "back": "/orders"}, headers=HTML)
+
+    page = page_read(answer.text)
+    assert (answer.status_code, answer.mimetype) == (413, "text/html")
+    assert f"the request body is larger than {most} bytes" in page.text
+    assert back_of(page) == "/"
+
+
 def test_a_link_that_signs_nobody_in_any_more_says_so_and_offers_the_form(shop: Shop) -> None:
     answer = shop.http.get("/sign-in/never-made", headers=HTML)
 
