@@ -17,6 +17,7 @@ from service.settings import AccessSettings, PlaceSettings, ServiceSettings
 from tests.service.api.guarded import bearing, new_key
 from tests.service.conftest import parts_of
 from tests.service.fakes import MANY
+from tests.service.pages.pages_read import page_read
 from tests.service.pages.test_own_routes import HTML
 from tests.service.shop import TUNE
 
@@ -55,10 +56,15 @@ def documents_in(html: str) -> Any:
 
 
 def test_who_is_not_signed_in_is_told_where_to_sign_in_to_order(client: FlaskClient) -> None:
-    html = client.get(f"/discs/{made(client, {})}", headers=HTML).text
+    disc = f"/discs/{made(client, {})}"
 
-    assert "Who is signed in can order it." in html
+    html = client.get(disc, headers=HTML).text
+
+    assert "Sign in to order it." in html
     assert 'id="ordering"' not in html
+    way = next(link for link in page_read(html).one("main").all("a") if link.text == "Sign in").attributes["href"]
+    form = page_read(client.get(way, headers=HTML).text)
+    assert form.one("input", name="back").attributes["value"] == disc
 
 
 def test_a_disc_whose_documents_ship_is_ordered_by_their_ids(client: FlaskClient) -> None:
