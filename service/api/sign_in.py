@@ -18,8 +18,9 @@ from service.moments import utc_now
 from service.parts import Parts
 
 FIRST_PAGE = "/"
+MOST_CHARACTERS = 2000  # of the path of a page: what every browser and server takes
 # A path of this service: two slashes, or a backslash, which browsers take for one, would begin another host.
-OWN_PAGE = re.compile(r"/(?!/)[\x21-\x5b\x5d-\x7e]{0,2000}")
+OWN_PAGE = re.compile(rf"/(?!/)[\x21-\x5b\x5d-\x7e]{{0,{MOST_CHARACTERS - 1}}}")
 
 
 def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blueprint:

@@ -12,6 +12,7 @@ from flask.testing import FlaskClient
 
 from layout.documents.shipped import shipped_text
 from service.access.scopes import Scope
+from service.api.models.orders import MOST_COPIES, MOST_LINE_CHARACTERS
 from service.app import create_app
 from service.settings import AccessSettings, PlaceSettings, ServiceSettings
 from tests.service.api.guarded import bearing, new_key
@@ -73,6 +74,9 @@ def test_a_disc_whose_documents_ship_is_ordered_by_their_ids(client: FlaskClient
     html = client.get(f"/discs/{made(client, who)}", headers={**HTML, **who}).text
 
     assert '<form class="panel narrow" id="ordering"' in html
+    page = page_read(html)
+    assert page.one("input", id="ordering-quantity").attributes["max"] == str(MOST_COPIES)
+    assert page.one("input", id="ordering-reference").attributes["maxlength"] == str(MOST_LINE_CHARACTERS)
     assert documents_in(html) == {"order": {"movement": "fernhollow-31", "cutter": "fibre-laser"}, "parts": {}}
 
 
