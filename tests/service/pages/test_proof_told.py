@@ -84,10 +84,17 @@ def test_tempo_octaves_and_notes_not_asked_for_are_told() -> None:
 
     assert played.otherwise == (
         "it plays at 98 % of the tempo written",
-        "2 notes are moved by octaves",
+        "2 notes are moved by one or more octaves",
         "1 note sounds a little earlier or later, by 6 thousandths of a second",
     )
     assert played.not_asked == ("4 notes, because the turn of the disc ends before them",)
+
+
+def test_notes_that_may_sound_in_the_wrong_order_are_told_of_in_hundredths_of_a_second() -> None:
+    told = found_of({"findings": [finding(Code.TIMING_TOO_COARSE, "warning")]})
+
+    # They are found from ORDER_HEARD_MS on, 20 ms: two hundredths of a second.
+    assert "some hundredths of a second early or late" in told[0].found[0].words
 
 
 def test_findings_are_told_by_kind_the_gravest_first_with_their_places_and_without_figures() -> None:
