@@ -18,8 +18,9 @@ from service.moments import utc_now
 from service.parts import Parts
 
 FIRST_PAGE = "/"
+MOST_CHARACTERS = 2000  # of the path of a page: what every browser and server takes
 # A path of this service: two slashes, or a backslash, which browsers take for one, would begin another host.
-OWN_PAGE = re.compile(r"/(?!/)[\x21-\x5b\x5d-\x7e]{0,2000}")
+OWN_PAGE = re.compile(rf"/(?!/)[\x21-\x5b\x5d-\x7e]{{0,{MOST_CHARACTERS - 1}}}")
 
 
 def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blueprint:
@@ -76,6 +77,11 @@ def sign_in_routes(parts: Parts, clock: Callable[[], datetime] = utc_now) -> Blu
     return routes
 
 
+def own_page(wanted: str) -> str:
+    """The page of this service that is wanted; the first page where what is wanted is none of them."""
+    return wanted if OWN_PAGE.fullmatch(wanted) else FIRST_PAGE
+
+
 def _key_posted(asked: Request, public_url: str | None) -> str:
     """What the field `key` of a form holds; "" where there is none.
 
@@ -98,8 +104,7 @@ def _key_posted(asked: Request, public_url: str | None) -> str:
 
 def _page_wanted(asked: Request) -> str:
     """The page of this service that the field `back` of a form names; the first page where it names none."""
-    back = asked.form.get("back", "")
-    return back if OWN_PAGE.fullmatch(back) else FIRST_PAGE
+    return own_page(asked.form.get("back", ""))
 
 
 def _led_on(to: str = FIRST_PAGE) -> Response:

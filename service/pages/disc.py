@@ -16,6 +16,7 @@ from service.api.asking import asker_or_none, open_on_loopback
 from service.api.desk import LayoutDesk
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery
+from service.api.models.orders import MOST_COPIES, MOST_LINE_CHARACTERS
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments
 from service.documents import Shipped
@@ -39,11 +40,15 @@ class Ordering:
         of: How many discs the tune is cut into: an order is for them all.
         documents: `order` names the documents that ship, as the part `order` of a request does; `parts` has the texts
             of the others by name.
+        most_copies: As many of each disc may be ordered.
+        most_characters: As long may the reference be.
     """
 
     may: bool
     of: int
     documents: Mapping[str, Mapping[str, str]]
+    most_copies: int = MOST_COPIES
+    most_characters: int = MOST_LINE_CHARACTERS
 
 
 class DiscQuery(DespiteQuery):

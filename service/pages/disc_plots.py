@@ -5,6 +5,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from layout.mechanics.tolerances import ORDER_HEARD_MS
+from service.pages.disc_told import signed
 from service.pages.plot_shapes import Bar, Drawn, NoPlot, Plot, Tick, across, bar, middle, names_along, scale, up
 from service.pages.texts import text_of
 
@@ -133,13 +134,13 @@ def _timing(tracks: Sequence[Mapping[str, Any]]) -> Plot | NoPlot:
 
 def _worth(told: Sequence[Mapping[str, Any]], semitones: int, *, several: bool) -> Plot | NoPlot:
     if not told[1:]:
-        return NoPlot(name="worth", words=text_of("plots.worth_unknown", chosen=_signed(semitones)))
+        return NoPlot(name="worth", words=text_of("plots.worth_unknown", chosen=signed(semitones)))
     best = max(one["bound"] for one in told) or 1
     top, y_ticks = scale(100.0)
-    names = [_signed(one["semitones"]) for one in told]
+    names = [signed(one["semitones"]) for one in told]
     chosen = next((place for place, one in enumerate(told) if one["semitones"] == semitones), None)
     upright = next((place for place, one in enumerate(told) if one["semitones"] == 0), 0)
-    words = text_of("plots.worth_words", count=len(told), chosen=_signed(semitones))
+    words = text_of("plots.worth_words", count=len(told), chosen=signed(semitones))
     bars = [drawn for place, one in enumerate(told) for drawn in _worth_bars(place, len(told), one, best * top / 100)]
     used = {one.drawn for one in bars}
     ways: tuple[Drawn, ...] = ("full", "part", "most")
@@ -171,7 +172,3 @@ def _worth_row(name: str, one: Mapping[str, Any], best: int) -> tuple[str, ...]:
     how: Drawn = "full" if kept == bound else "most" if kept is None else "part"
     shown = "–" if kept is None else f"{100 * kept / best:.1f}"
     return name, shown, f"{100 * bound / best:.1f}", text_of(f"plots.known_{how}")
-
-
-def _signed(semitones: int) -> str:
-    return f"{semitones:+d}".replace("-", "\N{MINUS SIGN}").replace("+0", "0")

@@ -80,7 +80,7 @@ def facts_of(shown: ShownDisc) -> tuple[tuple[str, str], ...]:
         "projections": text_of("disc.fact_projections_value", count=report["projection_count"], tracks=used),
         "notes": text_of("disc.fact_notes_value", kept=total["kept_count"], asked=total["note_count"]),
         "worth": text_of(worth, share=_percent(total["kept_share"])),
-        "pitch": text_of("disc.fact_pitch_value", semitones=_signed(layout["transposed_semitones"])),
+        "pitch": text_of("disc.fact_pitch_value", semitones=signed(layout["transposed_semitones"])),
         "speed": text_of("disc.fact_speed_value", factor=f"{layout['speed_factor']:.4g}"),
         "fingerprint": layout["fingerprint"],
     }
@@ -146,6 +146,11 @@ def counted(key: str, count: int) -> str:
     return text_of(f"{key}_one" if count == 1 else key, count=count)
 
 
+def signed(semitones: int) -> str:
+    """A transposition with its sign, the minus as it is printed; nought without one."""
+    return f"{semitones:+d}".replace("-", "\N{MINUS SIGN}").replace("+0", "0")
+
+
 def _voice(name: str, tally: Mapping[str, Any]) -> VoiceTold:
     moved = []
     if tally["octave_count"]:
@@ -172,10 +177,6 @@ def _reasons(counts: Mapping[str, int]) -> tuple[str, ...]:
 
 def _percent(share: float | None) -> str:
     return "–" if share is None else f"{100 * share:.1f} %"
-
-
-def _signed(semitones: int) -> str:
-    return f"{semitones:+d}".replace("-", "\N{MINUS SIGN}").replace("+0", "0")
 
 
 def _key(name: str) -> str:

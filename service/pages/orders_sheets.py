@@ -1,8 +1,12 @@
 """The work sheet of a disc to be looked at in its page: pictures of the PDF's pages, made when they are asked for."""
 
 import io
+import logging
 import threading
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
+from functools import lru_cache
 
 import pypdfium2  # type: ignore[import-untyped]  # it ships no types
 from flask import Request, Response
@@ -12,17 +16,28 @@ from service.api.order_answers import file_address
 from service.api.problems import ProblemError
 from service.orders.views import FileView, PlanView
 from service.parts import Parts
+from service.store.files import FileStore
 
 SHEET = "work-sheet.pdf"
 PNG_MEDIA_TYPE = "image/png"
 PIXELS_PER_POINT = 1.6  # 115 to the inch: the smallest letters of a sheet can be read
 COLOURS = 64  # of a picture; a sheet has few, and a third of the bytes is enough
+COUNTS_KEPT = 1000  # work sheets of which the count of pages is kept; 0.1 kB each
 _READING = threading.Lock()  # PDFium may be used by one thread at a time
+
+log = logging.getLogger(__name__)
+
+
+class SheetDamagedError(Exception):
+    """A work sheet is there, but no PDF that can be opened."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class SheetTold:
-    """A disc's work sheet: its number, where its pages are shown as pictures, and where the file itself is."""
+    """A disc's work sheet: its number, where its pages are shown as pictures, and where the file itself is.
+
+    No pages: the file is damaged and cannot be shown.
+    """
 
     disc: int
     pages: tuple[str, ...]
@@ -38,10 +53,11 @@ def sheet_told(parts: Parts, order_id: str, plan: PlanView, disc: int) -> SheetT
     found = [file for file in plan.files if (file.disc, file.name) == (disc, SHEET)]
     if not found:
         return None
-    with _READING:
-        document = pypdfium2.PdfDocument(parts.files.read(found[0].sha256))
-        count = len(document)
-        document.close()
+    try:
+        count = _page_count(parts.files, found[0].sha256)
+    except SheetDamagedError:
+        log.error("the work sheet %s of order %s cannot be opened", found[0].sha256, order_id, exc_info=True)
+        count = 0
     base = f"/orders/{order_id}/discs/{disc}/work-sheet"
     return SheetTold(
         disc=disc,
@@ -80,17 +96,48 @@ def picture_of(pdf: bytes, number: int) -> bytes:
         number: Of the page, from 1.
 
     Raises:
-        ProblemError: There is no such page.
+        ProblemError: There is no such page, or the file is damaged.
     """
-    with _READING:
-        document = pypdfium2.PdfDocument(pdf)
-        try:
+    try:
+        with _opened(pdf) as document:
             if not 1 <= number <= len(document):
                 detail = f"the work sheet has no page {number}; it has {len(document)}"
                 raise ProblemError(name="route-unknown", detail=detail)
             image = document[number - 1].render(scale=PIXELS_PER_POINT).to_pil()
-        finally:
-            document.close()
+    except SheetDamagedError as fault:
+        raise ProblemError(name="route-unknown", detail="the work sheet is damaged and cannot be shown") from fault
     out = io.BytesIO()
     image.convert("RGB").quantize(COLOURS, method=Image.Quantize.FASTOCTREE).save(out, "PNG")
     return out.getvalue()
+
+
+@lru_cache(maxsize=COUNTS_KEPT)
+def _page_count(files: FileStore, sha256: str) -> int:
+    """How many pages a work sheet has: counted once, for what a digest names never changes.
+
+    Raises:
+        SheetDamagedError: It cannot be opened; the next time it is tried again, as it may be restored meanwhile.
+        StoreError: It cannot be read.
+    """
+    with _opened(files.read(sha256)) as document:
+        return len(document)
+
+
+@contextmanager
+def _opened(pdf: bytes) -> Iterator[pypdfium2.PdfDocument]:
+    """A PDF, closed however it is left.
+
+    Raises:
+        SheetDamagedError: PDFium cannot read it.
+    """
+    with _READING:
+        try:
+            document = pypdfium2.PdfDocument(pdf)
+        except pypdfium2.PdfiumError as fault:
+            raise SheetDamagedError(str(fault)) from fault
+        try:
+            yield document
+        except pypdfium2.PdfiumError as fault:
+            raise SheetDamagedError(str(fault)) from fault
+        finally:
+            document.close()

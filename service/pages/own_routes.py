@@ -4,6 +4,7 @@ from flask import Blueprint, Response, request
 from werkzeug.exceptions import NotFound
 
 from service.api.asking import open_to_all
+from service.api.sign_in import own_page
 from service.pages.assets import assets, digest
 from service.pages.page_views import gives_page
 from service.pages.rendering import page
@@ -34,6 +35,6 @@ def own_routes() -> Blueprint:
     @gives_page
     @open_to_all
     def show_sign_in() -> Response:
-        return page(request, "sign_in.html", problem=None, back="/")
+        return page(request, "sign_in.html", problem=None, back=own_page(request.args.get("back", "")))
 
     return routes

@@ -3,10 +3,12 @@
 import json
 
 from flask import Flask, Response, request
+from werkzeug.exceptions import HTTPException
 
 from service.api.media import prefers_html
 from service.api.problems import PROBLEM_MEDIA_TYPE
 from service.api.proofs import PAGE as PROOFS
+from service.api.sign_in import FIRST_PAGE
 from service.pages.rendering import page
 
 API = "/v1/"
@@ -33,13 +35,21 @@ def show_problems(app: Flask) -> None:
             template,
             status=response.status_code,
             problem=problem,
-            back=request.form.get("back", "/") if is_sign_in else request.path + (f"?{query}" if query else ""),
+            back=_back_of_form() if is_sign_in else request.path + (f"?{query}" if query else ""),
         )
         for name in ("Retry-After", "WWW-Authenticate", "RateLimit", "RateLimit-Policy"):
             if name in response.headers:
                 shown.headers[name] = response.headers[name]
         shown.vary.add("Accept")
         return shown
+
+
+def _back_of_form() -> str:
+    """The page that the form wanted to come back to; the first where its body is no form that can be read."""
+    try:
+        return request.form.get("back", FIRST_PAGE)
+    except HTTPException:  # it is too large, or was never sent whole: that was the problem to begin with
+        return FIRST_PAGE
 
 
 def _template_for(path: str, status: int) -> str:

@@ -1,18 +1,13 @@
 """/proof/<text>: what a customer with a signed link sees and hears of an order, and where they say yes or no."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
-from typing import Annotated
 
 from flask import Blueprint, Request, Response, request
-from pydantic import Field
 
-from layout.documents.reading import Part
-from layout.documents.settings import MOST_DISCS
 from service.api.asking import open_but_counted
 from service.api.media import prefers_html
-from service.api.problems import ProblemError
 from service.api.proofs import PAGE, proof_address, proof_of, proof_shown, waits_for_decision
-from service.api.request_models import read_arguments
 from service.orders.finding import verdicts_on
 from service.orders.proofs import Proof, ProofLinks
 from service.orders.states import EventType, State
@@ -27,12 +22,6 @@ from service.pages.texts import text_of
 from service.parts import Parts
 
 NOT_TO_FIND = "noindex, nofollow"  # X-Robots-Tag: who has the link sees the order, so it is in no list of links
-
-
-class ProofQuery(Part):
-    """Which disc of a proof is shown."""
-
-    disc: Annotated[int, Field(ge=1, le=MOST_DISCS)] = 1
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -74,9 +63,7 @@ def _led(text: str) -> Response:
 
 def _page(parts: Parts, proof: Proof, text: str, asked: Request) -> Response:
     order, plan = proof_shown(parts, proof)
-    number = read_arguments(asked, ProofQuery).disc
-    if number > len(plan.told["discs"]):
-        raise ProblemError(name="route-unknown", detail=f"this proof has no disc {number}")
+    number = _disc_wanted(asked, [disc["number"] for disc in plan.told["discs"]])
     shown = _shown(parts, order, plan, number, text)
     with parts.store.reading() as session:
         said = verdicts_on(session, proof.order_id, proof.revision)
@@ -97,6 +84,12 @@ def _page(parts: Parts, proof: Proof, text: str, asked: Request) -> Response:
         verdicts=[_told(verdict) for verdict in said],
         data={"verdict": f"{proof_address(text)}/verdict"},
     )
+
+
+def _disc_wanted(asked: Request, numbers: Sequence[int]) -> int:
+    """The disc that a link names, the first where it names none there is; mail programs add parameters of their own."""
+    wanted = asked.args.get("disc")
+    return next((number for number in numbers if str(number) == wanted), numbers[0])
 
 
 def standing_of(order: OrderView, proof: Proof) -> str:

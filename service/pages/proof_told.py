@@ -43,15 +43,23 @@ KINDS: Mapping[str, frozenset[Code]] = {
     "tempo": frozenset({Code.TURN_DIFFERS, Code.TEMPO_SAGS}),
 }
 NOT_TOLD = frozenset({"ruled-out"})  # which notes the shop took out by hand is the shop's; how many is in the report
+PLACES_SHOWN = 24  # findings of one kind that a customer is led to one by one: enough to see what is meant
 OF_A_NOTE = ("onset_s", "pitch", "voice")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class FoundTold:
-    """What was found of one kind: in words, and the places in the list of findings that can be shown on the disc."""
+    """What was found of one kind.
+
+    Attributes:
+        words: What it is.
+        places: In the list of findings, those that are shown on the disc: PLACES_SHOWN at most.
+        more: How many more have a place on the disc.
+    """
 
     words: str
     places: tuple[int, ...]
+    more: int
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -141,7 +149,12 @@ def found_of(layout: Record) -> tuple[FoundOfLevel, ...]:
                 places = by_kind.setdefault(kind_of(finding["code"]), [])
                 places.extend([place] if finding["at"] else [])
         found = tuple(
-            FoundTold(words=text_of(f"proof.found_{kind}"), places=tuple(places)) for kind, places in by_kind.items()
+            FoundTold(
+                words=text_of(f"proof.found_{kind}"),
+                places=tuple(places[:PLACES_SHOWN]),
+                more=len(places[PLACES_SHOWN:]),
+            )
+            for kind, places in by_kind.items()
         )
         if found:
             told.append(FoundOfLevel(level=level, heading=text_of(f"proof.level_{level}"), found=found))

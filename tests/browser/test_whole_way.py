@@ -4,7 +4,7 @@ import io
 from collections.abc import Callable
 
 from ezdxf.filemanagement import read
-from playwright.sync_api import Download, Page
+from playwright.sync_api import Download, Page, Route
 
 from service.client.client import Client
 from tests.browser.conftest import Window
@@ -164,3 +164,25 @@ def test_a_release_that_comes_too_late_is_told_where_it_was_asked_for(open_windo
     assert page.inner_text("#not-done").startswith("This was not done, since the order has changed meanwhile")
     assert focused(page) == "not-done"
     assert "called off by telephone" in page.inner_text("[data-part=standing]")
+
+
+def test_who_comes_back_to_a_disc_that_was_ordered_orders_it_once_more(open_window: Callable[..., Window]) -> None:
+    shop = open_window(signed_in=True)
+    page = shop.open("/discs/{disc}", "#rulings[data-ready]")
+    names: list[str] = []
+
+    def place(route: Route) -> None:
+        names.append(route.request.headers["idempotency-key"])
+        route.fulfill(status=202, json={"id": f"order_{len(names)}"})
+
+    page.route("**/v1/orders", place)
+    page.route("**/orders/order_*", lambda route: route.fulfill(status=204))  # the page stays, as one kept for Back
+    button = "#ordering button[type=submit]"
+    for _ in range(2):
+        with page.expect_response("**/orders/order_*"):
+            page.click(button)
+        assert page.is_disabled(button)
+        page.evaluate("dispatchEvent(new PageTransitionEvent('pageshow', { persisted: true }))")
+        assert page.is_enabled(button)
+
+    assert len(set(names)) == 2

@@ -16,6 +16,8 @@ from service.api.models.records import CutterTold, DiscAnswer, DocumentTold, Wor
 from service.orders.states import State
 
 MOST_PAGE = 200  # orders of one page: about 600 kB of JSON
+MOST_COPIES = 10_000  # of each disc of an order: a workshop's whole year, and a slip of the hand is told
+MOST_LINE_CHARACTERS = 200  # of a name, a reference or a reason: one line that fits on a work sheet and in a list
 MOST_WAIT_S = 30  # s; proxies give up after 60
 ORDER_ID = r"^order_[0-9a-f]{32}$"
 PLAN_TAG = r"^[1-9][0-9]{0,9}-[0-9a-f]{64}$"
@@ -49,7 +51,9 @@ def _with_zone(moment: datetime) -> datetime:
 # A schema can forbid control characters; that others cannot be printed either is checked, and told in the detail.
 PRINTABLE = {"pattern": "^[^\\u0000-\\u001f\\u007f-\\u009f]*$"}
 OneLine = Annotated[
-    str, AfterValidator(_one_line), Field(min_length=1, max_length=200, json_schema_extra={**PRINTABLE})
+    str,
+    AfterValidator(_one_line),
+    Field(min_length=1, max_length=MOST_LINE_CHARACTERS, json_schema_extra={**PRINTABLE}),
 ]
 Reason = OneLine
 Instant = Annotated[datetime, BeforeValidator(_rfc_3339), AfterValidator(_with_zone)]
@@ -90,7 +94,7 @@ class OrderBody(Part):
     )
     cutter: Named | None = Field(default=None, description="which cutter; null for the default")
     settings: SettingsBrought = Field(default_factory=dict, description="a settings document")
-    quantity: Annotated[int, Field(ge=1, le=10_000)] = Field(default=1, description="copies of each disc")
+    quantity: Annotated[int, Field(ge=1, le=MOST_COPIES)] = Field(default=1, description="copies of each disc")
     reference: OneLine | None = Field(default=None, description="the sender's own, such as an order number")
     tune_name: OneLine | None = Field(default=None, description="what the tune's file is called")
     most_lost_share: Annotated[float, Field(ge=0, le=1)] = Field(

@@ -5,7 +5,7 @@ from typing import Annotated
 from pydantic import Field, StrictBool
 
 from layout.documents.reading import Part
-from service.api.models.orders import Named, OneLine, SettingsBrought
+from service.api.models.orders import MOST_COPIES, Named, OneLine, SettingsBrought
 from service.limits import Limits
 
 MOST_PAIRS = Limits().run_orders
@@ -32,7 +32,7 @@ class RunBody(Part):
     )
     cutter: Named | None = Field(default=None, description="which cutter; null for the default")
     settings: SettingsBrought = Field(default_factory=dict, description="a settings document for all")
-    quantity: Annotated[int, Field(ge=1, le=10_000)] = Field(default=1, description="copies of each disc")
+    quantity: Annotated[int, Field(ge=1, le=MOST_COPIES)] = Field(default=1, description="copies of each disc")
     reference: OneLine | None = Field(
         default=None, description="the sender's own; orders without one of theirs get it with their number"
     )

@@ -86,9 +86,9 @@ def test_each_track_that_is_used_has_its_timing_error_as_bars_and_as_a_figure_be
     assert {bar.drawn for bar in together} == {"most"}
     assert {bar.drawn for bar in roots} == {"full"}
     assert len(together) == len(roots) == len(plot.rows) == len(tracks)
-    assert plot.rows[0] == ("1", "36", "15.0", "18.3", "6.0")  # root of squares, together, largest nudge, in ms
+    assert plot.rows[0] == ("1", "36", "15.0", "18.3", "6.0")  # root sum of squares, together, largest nudge, in ms
     assert all(strong.height <= most.height for strong, most in zip(roots, together, strict=True))
-    assert "18.3 ms early or late, 15.0 ms by root of squares: on track 1, 36 mm" in plot.words
+    assert "18.3 ms early or late, 15.0 ms by root sum of squares: on track 1, 36 mm" in plot.words
     assert plot.limit is not None
     # 20 ms and 18.3 ms on one scale, each to a tenth of a unit.
     assert together[0].height / (FOOT - plot.limit.at) == pytest.approx(tracks[0]["together_ms"] / 20, abs=0.002)

@@ -58,6 +58,38 @@ def test_a_picture_that_is_known_is_not_made_again(shop: Shop, monkeypatch: pyte
     assert first.headers["Cache-Control"] == "private, no-cache"
 
 
+def test_a_damaged_work_sheet_is_told_of_and_the_rest_of_the_order_is_shown(
+    shop: Shop, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    order_id = shop.ready()
+    address = f"/orders/{order_id}/discs/1/work-sheet/1.png"
+    pdf = file_of(shop, order_id, 1)
+    read = type(shop.parts.files).read
+    monkeypatch.setattr(
+        type(shop.parts.files), "read", lambda *asked: pdf[:40] if read(*asked) == pdf else read(*asked)
+    )
+
+    pages = [order_seen(shop, order_id), seen(shop, f"/orders/{order_id}/discs/1")]
+    picture = asked(shop, address)
+
+    for page in pages:
+        sheet = page.one("details", id="sheet-1")
+        assert "The work sheet is damaged and cannot be shown." in sheet.text
+        assert not sheet.all("img")
+    assert picture.status_code == 404
+    assert "the work sheet is damaged" in picture.text
+    monkeypatch.undo()
+    assert len(part(order_seen(shop, order_id), "sheets").all("img")) == 2  # restored, it is shown
+
+
+def test_the_pages_of_a_work_sheet_are_counted_once(shop: Shop, monkeypatch: pytest.MonkeyPatch) -> None:
+    order_id = shop.ready()
+    order_seen(shop, order_id)
+    monkeypatch.setattr(orders_sheets, "_opened", lambda _: pytest.fail("it was opened again"))
+
+    assert len(part(order_seen(shop, order_id), "sheets").all("img")) == 2
+
+
 def test_the_work_sheet_of_an_older_plan_stays_the_one_of_that_plan(shop: Shop) -> None:
     order_id = shop.ready()
     shop.decide(order_id, "replan", shop.web, settings=NO_ROOM["settings"])

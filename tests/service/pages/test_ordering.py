@@ -12,11 +12,13 @@ from flask.testing import FlaskClient
 
 from layout.documents.shipped import shipped_text
 from service.access.scopes import Scope
+from service.api.models.orders import MOST_COPIES, MOST_LINE_CHARACTERS
 from service.app import create_app
 from service.settings import AccessSettings, PlaceSettings, ServiceSettings
 from tests.service.api.guarded import bearing, new_key
 from tests.service.conftest import parts_of
 from tests.service.fakes import MANY
+from tests.service.pages.pages_read import page_read
 from tests.service.pages.test_own_routes import HTML
 from tests.service.shop import TUNE
 
@@ -55,10 +57,15 @@ def documents_in(html: str) -> Any:
 
 
 def test_who_is_not_signed_in_is_told_where_to_sign_in_to_order(client: FlaskClient) -> None:
-    html = client.get(f"/discs/{made(client, {})}", headers=HTML).text
+    disc = f"/discs/{made(client, {})}"
 
-    assert "Who is signed in can order it." in html
+    html = client.get(disc, headers=HTML).text
+
+    assert "Sign in to order it." in html
     assert 'id="ordering"' not in html
+    way = next(link for link in page_read(html).one("main").all("a") if link.text == "Sign in").attributes["href"]
+    form = page_read(client.get(way, headers=HTML).text)
+    assert form.one("input", name="back").attributes["value"] == disc
 
 
 def test_a_disc_whose_documents_ship_is_ordered_by_their_ids(client: FlaskClient) -> None:
@@ -67,6 +74,9 @@ def test_a_disc_whose_documents_ship_is_ordered_by_their_ids(client: FlaskClient
     html = client.get(f"/discs/{made(client, who)}", headers={**HTML, **who}).text
 
     assert '<form class="panel narrow" id="ordering"' in html
+    page = page_read(html)
+    assert page.one("input", id="ordering-quantity").attributes["max"] == str(MOST_COPIES)
+    assert page.one("input", id="ordering-reference").attributes["maxlength"] == str(MOST_LINE_CHARACTERS)
     assert documents_in(html) == {"order": {"movement": "fernhollow-31", "cutter": "fibre-laser"}, "parts": {}}
 
 

@@ -8,7 +8,7 @@ import pytest
 
 from layout.arrange.arrangement import LeftOutReason
 from layout.check.finding import Code
-from service.pages.proof_told import KINDS, customer_data, found_of, kind_of, played_of
+from service.pages.proof_told import KINDS, PLACES_SHOWN, customer_data, found_of, kind_of, played_of
 from service.pages.texts import texts
 from tests.service.pages.discs_shown import shown
 
@@ -84,10 +84,17 @@ def test_tempo_octaves_and_notes_not_asked_for_are_told() -> None:
 
     assert played.otherwise == (
         "it plays at 98 % of the tempo written",
-        "2 notes are moved by octaves",
+        "2 notes are moved by one or more octaves",
         "1 note sounds a little earlier or later, by 6 thousandths of a second",
     )
     assert played.not_asked == ("4 notes, because the turn of the disc ends before them",)
+
+
+def test_notes_that_may_sound_in_the_wrong_order_are_told_of_in_hundredths_of_a_second() -> None:
+    told = found_of({"findings": [finding(Code.TIMING_TOO_COARSE, "warning")]})
+
+    # They are found from ORDER_HEARD_MS on, 20 ms: two hundredths of a second.
+    assert "some hundredths of a second early or late" in told[0].found[0].words
 
 
 def test_findings_are_told_by_kind_the_gravest_first_with_their_places_and_without_figures() -> None:
@@ -106,6 +113,15 @@ def test_findings_are_told_by_kind_the_gravest_first_with_their_places_and_witho
     words = " ".join(kind.words for one in told for kind in one.found)
     assert "0.4" not in words
     assert "wider" not in words
+
+
+def test_a_customer_is_told_how_many_places_are_not_shown_one_by_one() -> None:
+    findings = [finding(Code.WEB_TO_RIM, "error", angle_deg=float(place)) for place in range(PLACES_SHOWN + 3)]
+
+    many, as_many = (found_of({"findings": some})[0].found[0] for some in (findings, findings[:PLACES_SHOWN]))
+
+    assert (many.places, many.more) == (tuple(range(PLACES_SHOWN)), 3)
+    assert (as_many.places, as_many.more) == (tuple(range(PLACES_SHOWN)), 0)
 
 
 def test_a_finding_keeps_its_number_in_the_data_so_that_its_button_leads_to_its_place() -> None:

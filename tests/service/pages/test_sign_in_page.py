@@ -52,6 +52,20 @@ def test_a_form_that_names_no_page_of_this_service_leads_to_the_first_one(shop: 
     assert led.headers.getlist("Set-Cookie")[0].count("discwright=") == 1
 
 
+@pytest.mark.parametrize(
+    ("back", "shown"),
+    [
+        *(("/discs/abc?a=b", "/discs/abc?a=b"), ("//elsewhere.example", "/"), ("/\\elsewhere.example", "/")),
+        *(("javascript:alert(1)", "/"), ("/sign-in", "/"), ("", "/")),
+    ],
+)
+def test_the_form_comes_back_to_the_page_that_led_to_it_and_to_no_other_site(shop: Shop, back: str, shown: str) -> None:
+    answer = shop.http.get("/sign-in", query_string={"back": back}, headers=HTML)
+
+    assert answer.status_code == 200
+    assert back_of(page_read(answer.text)) == shown
+
+
 def test_a_key_that_is_not_in_force_is_told_beside_its_field_and_the_way_on_is_kept(shop: Shop) -> None:
     answer = shop.http.post("/sign-in", data={"key": "dw_none", "back": "/orders"}, headers=HTML)
 
@@ -63,6 +77,17 @@ def test_a_key_that_is_not_in_force_is_told_beside_its_field_and_the_way_on_is_k
     assert page.one("span", id="key-fault").text.startswith("This is no key that is in force.")
     assert "dw_none" not in answer.text
     assert back_of(page) == "/orders"
+
+
+def test_a_form_over_the_limit_of_bodies_is_told_of_and_offered_again(shop: Shop) -> None:
+    most = shop.parts.settings.limits.upload_bytes
+
+    answer = shop.http.post("/sign-in", data={"key": "x" * most, "back": "/orders"}, headers=HTML)
+
+    page = page_read(answer.text)
+    assert (answer.status_code, answer.mimetype) == (413, "text/html")
+    assert f"the request body is larger than {most} bytes" in page.text
+    assert back_of(page) == "/"
 
 
 def test_a_link_that_signs_nobody_in_any_more_says_so_and_offers_the_form(shop: Shop) -> None:

@@ -3,7 +3,7 @@ import { find, pageData } from "../dom.js";
 import { ask, Problem } from "../asking.js";
 import { clearFaults, showFault } from "../orders/faults.js";
 import { bodyOf } from "../orders/fields.js";
-import { nameFor } from "../orders/sending.js";
+import { forgetName, nameFor } from "../orders/sending.js";
 import { text } from "../texts.js";
 
 // What a layout was made from, byte for byte.
@@ -29,7 +29,9 @@ async function send(form, fingerprint) {
   body.append("settings", settings);
   for (const [name, words] of Object.entries(parts)) body.append(name, new Blob([words], { type: "application/json" }));
   const headers = { "Idempotency-Key": `"${nameFor(form, { asked, fingerprint })}"` };
-  return (await ask("POST", "/v1/orders", { form: body, headers })).value;
+  const { value } = await ask("POST", "/v1/orders", { form: body, headers });
+  forgetName(form);
+  return value;
 }
 
 // `state` is the page's: rulings may have put another disc into it meanwhile.
@@ -48,5 +50,9 @@ export function openOrdering(state) {
       button.disabled = false;
       showFault(form, fault);
     }
+  });
+  // Who comes back from the order finds the page as it was left, and may order the disc once more.
+  addEventListener("pageshow", ({ persisted }) => {
+    if (persisted && form) find("button[type=submit]", form).disabled = false;
   });
 }

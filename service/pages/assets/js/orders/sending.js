@@ -17,6 +17,9 @@ export function nameFor(form, body) {
   return name;
 }
 
+// What was asked is done: the same words, sent again, are meant anew.
+export const forgetName = (form) => names.delete(form);
+
 // What each form asks of the API; a form that is not named here sends its fields to the address of its name.
 const ASKED = {
   "proof-links": (_, address) => ["POST", `${address}/proof-links`, {}],
@@ -37,7 +40,7 @@ async function send(form, address) {
   if (version) headers["If-Match"] = `"${version}"`;
   const [method, to, brought] = ASKED[what]?.(form, address, body) ?? ["POST", `${address}/${what}`, { json: body }];
   const { value } = await ask(method, to, { ...brought, headers });
-  names.delete(form);
+  forgetName(form);
   if (what === "proof-links") showLink(value);
   if (what === "repeat") location.assign(`/orders/${value.id}`);
 }
