@@ -9,7 +9,7 @@ layout that was told, byte for byte. A search that time stopped need not, so tha
 import logging
 import threading
 import time
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
 from itertools import chain
 
@@ -106,12 +106,10 @@ class LayoutDesk:
         documents = (read.movement, read.cutter, read.settings)
         if self._planner.fingerprint_of(kept.inputs.tune, *documents, number) == fingerprint:
             return self._again(kept)
-        address = f"/v1/layouts/{fingerprint}"
-        raise ProblemError(
-            name="layout-outdated",
-            detail=f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter "
-            "that ships in another revision now; its tune, documents and settings are kept",
-            more={"again": f"{address}/again", "settings": f"{address}/settings.json"},
+        raise _outdated(
+            kept,
+            f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter that ships "
+            "in another revision now; its tune, documents and settings are kept",
         )
 
     def lay_out_again(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
@@ -177,10 +175,17 @@ class LayoutDesk:
 
     def _laid_out(self, kept: KeptLayout) -> Layout:
         """A kept layout with all that is known of it: at hand, or laid out again."""
-        for laid_out in chain(chain.from_iterable(self._at_hand), self._anew(kept.inputs)):
-            is_it = laid_out.fingerprint == kept.fingerprint
-            if is_it and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
+        at_hand = [laid_out for laid_out in chain.from_iterable(self._at_hand) if _names(laid_out, kept)]
+        for laid_out in at_hand or self._compute(kept.inputs):  # once another disc, it is not searched for a second time
+            if _names(laid_out, kept) and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
                 return laid_out
+        if kept.has_all_files:
+            raise _outdated(
+                kept,
+                f"to be marked with the reason {kept.fingerprint} was laid out again and came to another disc, as a "
+                "search may that time stopped; what is kept of it stays. Send its settings with a longer time_limit_s, "
+                "or without one, and give the reason there",
+            )
         log.warning("laid out again, it is another disc, and kept no longer: %s", kept.fingerprint)
         self._cache.let_go(kept.fingerprint, kept.owner_id)
         raise ProblemError(
@@ -211,12 +216,18 @@ class LayoutDesk:
         self._at_hand = (computed, *self._at_hand)[:AT_HAND]  # one that another thread adds meanwhile may be lost
         return computed
 
-    def _anew(self, inputs: Inputs) -> Iterator[Layout]:
-        """The layouts of these inputs, computed when the first is asked for."""
-        yield from self._compute(inputs)
-
     def _cut_short(self, inputs: Inputs, computed: tuple[Layout, ...]) -> bool:
         """Whether the service's limit, and not the settings', has stopped the search for these layouts."""
         asked_s = inputs.read().settings.time_limit_s
         by_service = asked_s is None or asked_s > self._most_s
         return by_service and any(layout.stopped == "time" for layout in computed)
+
+
+def _names(laid_out: Layout, kept: KeptLayout) -> bool:
+    return laid_out.fingerprint == kept.fingerprint
+
+
+def _outdated(kept: KeptLayout, why: str) -> ProblemError:
+    address = f"/v1/layouts/{kept.fingerprint}"
+    more = {"again": f"{address}/again", "settings": f"{address}/settings.json"}
+    return ProblemError(name="layout-outdated", detail=why, more=more)

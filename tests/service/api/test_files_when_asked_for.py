@@ -163,6 +163,25 @@ def test_a_layout_that_comes_to_another_disc_gives_no_file_and_is_kept_no_longer
     assert kept_in(tmp_path) == []
 
 
+def test_a_reason_takes_no_kept_disc_away_whose_search_time_stopped(client_for: ClientFor, tmp_path: Path) -> None:
+    one = client_for(WanderingPlanner(findings=(THIN_WEB,), needs_s=2))
+    planner = WanderingPlanner(findings=(THIN_WEB,), needs_s=2, starts=[0.0])
+    made = one.post_parts({"tune": (BytesIO(TUNE), "a.mid"), "settings": '{"time_limit_s": 1}'}).json
+    other, address = client_for(planner), f"/v1/layouts/{made['fingerprint']}"
+    before = [path.read_bytes() for path in kept_in(tmp_path)]
+
+    refused = [other.get(f"{address}{file}?despite_findings=trial") for file in ("/disc.dxf", "", "/layout.json")]
+
+    assert [(answer.status_code, answer.json["type"]) for answer in refused] == [(410, "/problems/layout-outdated")] * 3
+    assert "came to another disc, as a search may that time stopped" in refused[0].json["detail"]
+    assert refused[0].json["settings"] == f"{address}/settings.json"
+    assert planner.laid_out_count == 1  # and is not searched for again and again
+    assert [path.read_bytes() for path in kept_in(tmp_path)] == before
+    assert other.get(address).json == made
+    marked = one.get(f"{address}/disc.dxf?despite_findings=trial").data  # where it was made, it is at hand
+    assert marked == b"disc.dxf of Harvest Dance NOT GOOD TO CUT: trial"
+
+
 def test_what_time_stopped_has_its_files_made_at_once(client_for: ClientFor) -> None:
     planner, other = FakePlanner(needs_s=2), FakePlanner(needs_s=2)
     client = client_for(planner)
