@@ -108,8 +108,8 @@ class LayoutDesk:
             return self._again(kept)
         raise _outdated(
             kept,
-            f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter that ships "
-            "in another revision now; its tune, documents and settings are kept",
+            f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter that "
+            "ships in another revision now; its tune, documents and settings are kept",
         )
 
     def lay_out_again(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
@@ -176,7 +176,7 @@ class LayoutDesk:
     def _laid_out(self, kept: KeptLayout) -> Layout:
         """A kept layout with all that is known of it: at hand, or laid out again."""
         at_hand = [laid_out for laid_out in chain.from_iterable(self._at_hand) if _names(laid_out, kept)]
-        for laid_out in at_hand or self._compute(kept.inputs):  # once another disc, it is not searched for a second time
+        for laid_out in at_hand or self._compute(kept.inputs):  # another disc is not searched for twice
             if _names(laid_out, kept) and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
                 return laid_out
         if kept.has_all_files:
