@@ -6,6 +6,7 @@ files of a layout that no process has at hand are made by laying it out again, a
 layout that was told, byte for byte. A search that time stopped need not, so that its files are all made at once.
 """
 
+import json
 import logging
 import threading
 import time
@@ -22,6 +23,7 @@ from service.planner import AnyPlanner, Layout
 
 log = logging.getLogger("discwright")
 
+JUDGED = {"findings", "good_to_cut"}  # of layout.json: what is said of the disc, and not what it is
 LOCKS = 16  # more than a process has threads that compute
 AT_HAND = 4  # sets of discs; a megabyte or two each
 
@@ -50,6 +52,8 @@ class LayoutDesk:
         self._cache = cache
         self._at_hand: tuple[tuple[Layout, ...], ...] = ()  # so that files of what was just made are soon there
         self._making = tuple(threading.Lock() for _ in range(LOCKS))  # so that two who ask at a time make them once
+
+        self._others: dict[str, ProblemError] = {}  # not the same again, and not searched for twice
 
     @property
     def program(self) -> str:
@@ -92,11 +96,11 @@ class LayoutDesk:
     def find(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
         """The layout kept under a fingerprint for an owner, else for nobody in particular, or None.
 
-        What an earlier version of the program kept is laid out again by this one where that gives the same layout: it
-        does where the engine is the same, whose version is part of the fingerprint.
+        What an earlier version of the program kept is laid out again by this one, and given where the engine is the
+        same, no search was stopped by time, and all that both tell of the disc is alike, findings apart.
 
         Raises:
-            ProblemError: An earlier engine laid it out.
+            ProblemError: An earlier engine laid it out, or it need not be the same disc.
             LayoutError: An earlier version took what this one does not.
         """
         kept, is_current = self.find_any(fingerprint, owner_id)
@@ -104,25 +108,76 @@ class LayoutDesk:
             return kept
         read, number = kept.inputs.read(), kept.disc_number
         documents = (read.movement, read.cutter, read.settings)
-        if self._planner.fingerprint_of(kept.inputs.tune, *documents, number) == fingerprint:
-            return self._again(kept)
-        raise _outdated(
-            kept,
-            f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter that "
-            "ships in another revision now; its tune, documents and settings are kept",
-        )
+        if self._planner.fingerprint_of(kept.inputs.tune, *documents, number) != fingerprint:
+            raise _outdated(
+                kept,
+                f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter that "
+                "ships in another revision now; its tune, documents and settings are kept",
+            )
+        if kept.stopped_by_time:
+            raise _outdated(
+                kept,
+                f"{fingerprint} was laid out by an earlier version of the program, and time stopped the search for it, "
+                "so that it may come to another disc; its tune, documents and settings are kept",
+            )
+        return self._same_again(kept)
 
     def lay_out_again(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
         """The layout of a fingerprint, or what this version makes of the same where an earlier one kept it; or None.
 
         Raises:
+            ProblemError: The service stopped the search for it, so that it is not kept.
             LayoutError: An earlier version took what this one does not.
         """
         kept, is_current = self.find_any(fingerprint, owner_id)
-        return kept if kept is None or is_current else self._again(kept)
+        if kept is None or is_current:
+            return kept
+        with self._lock_of(kept):
+            discs = self.lay_out_discs(kept.inputs, kept.owner_id)
+        again = discs[kept.disc_number - 1]
+        is_stopped = any(disc.stopped_by_time for disc in discs)
+        if is_stopped and self._cache.get(again.fingerprint, again.owner_id) is None:
+            raise self._cut_short_again(kept)
+        return again
 
-    def _again(self, kept: KeptLayout) -> KeptLayout:
-        return self.lay_out_discs(kept.inputs, kept.owner_id)[kept.disc_number - 1]
+    def _same_again(self, kept: KeptLayout) -> KeptLayout:
+        """What an earlier version kept, made by this one and kept from now on, if it is the same disc."""
+        with self._lock_of(kept):
+            made = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made it
+            if made is not None:
+                return made
+            if kept.fingerprint not in self._others:
+                computed = self._at_hand_of(kept) or self._compute(kept.inputs)
+                laid_out = computed[kept.disc_number - 1]
+                if any(one.stopped == "time" for one in computed):
+                    self._others[kept.fingerprint] = self._cut_short_again(kept)
+                elif not _same_disc(kept.files, self._planner.told_of(laid_out)):
+                    self._others[kept.fingerprint] = _outdated(
+                        kept,
+                        f"an earlier version of the program laid {kept.fingerprint} out, and this one comes to another "
+                        "disc; its tune, documents and settings are kept",
+                    )
+                else:
+                    again = self._kept(laid_out, kept.inputs, kept.owner_id)
+                    self._cache.put(again)
+                    return again
+            refusal = self._others[kept.fingerprint]
+            raise ProblemError(name=refusal.name, detail=refusal.detail, more=refusal.more)
+
+    def _cut_short_again(self, kept: KeptLayout) -> ProblemError:
+        return _outdated(
+            kept,
+            f"an earlier version of the program laid {kept.fingerprint} out, and the search for it was stopped after "
+            f"{self._most_s} s now, so that it may be another disc; send its settings with a shorter time_limit_s",
+        )
+
+    def _at_hand_of(self, kept: KeptLayout) -> tuple[Layout, ...]:
+        sets = (discs for discs in self._at_hand if any(_names(one, kept) for one in discs))
+        return next(sets, ())
+
+    def _lock_of(self, kept: KeptLayout) -> threading.Lock:
+        """One for all discs of a set, as they are computed together."""
+        return self._making[hash(kept.inputs) % LOCKS]
 
     def find_any(self, fingerprint: str, owner_id: str | None = None) -> tuple[KeptLayout | None, bool]:
         """A layout with what it was made from, whichever version made it, and whether that was this one."""
@@ -165,7 +220,7 @@ class LayoutDesk:
             return self._planner.files_of(self._laid_out(kept), not_good=reason)
         if kept.has_all_files:
             return kept.files
-        with self._making[hash(kept.fingerprint) % LOCKS]:
+        with self._lock_of(kept):
             other = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made them
             if other is not None and other.has_all_files and other.inputs == kept.inputs:
                 return other.files
@@ -225,6 +280,12 @@ class LayoutDesk:
 
 def _names(laid_out: Layout, kept: KeptLayout) -> bool:
     return laid_out.fingerprint == kept.fingerprint
+
+
+def _same_disc(before: Mapping[str, bytes], now: Mapping[str, bytes]) -> bool:
+    """Whether two versions tell the same disc, by all that both tell; how it is judged may change."""
+    old, new = (json.loads(files["layout.json"]) for files in (before, now))
+    return all(old[name] == new[name] for name in (old.keys() & new.keys()) - JUDGED)
 
 
 def _outdated(kept: KeptLayout, why: str) -> ProblemError:

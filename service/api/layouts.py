@@ -234,7 +234,9 @@ class LayoutTeller:
         response.headers["Content-Disposition"] = content_disposition(
             _named(kept, not_good=marked), file_name, how="inline" if is_picture else "attachment"
         )
-        response.headers["Cache-Control"] = f"private, max-age={self._limits.file_max_age_s}, immutable"
+        # Of one disc all the while, though another version of the program may draw it otherwise: not immutable.
+        age = "no-cache" if kept.stopped_by_time else f"max-age={self._limits.file_max_age_s}"
+        response.headers["Cache-Control"] = f"private, {age}"
         response.set_etag(tag)
         return response
 
@@ -244,6 +246,8 @@ class LayoutTeller:
 
     def _tag(self, kept: KeptLayout, what: str, reason: str | None) -> str:
         mark = "" if kept.good_to_cut or reason is None else "-" + hashlib.sha256(reason.encode()).hexdigest()[:16]
+        if kept.stopped_by_time:  # let go and searched for again, it may be another disc under the same fingerprint
+            mark += "-" + hashlib.sha256(kept.files["layout.json"]).hexdigest()[:16]
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
 
 
