@@ -12,7 +12,7 @@ import threading
 import time
 from collections.abc import Callable, Mapping
 from dataclasses import replace
-from itertools import chain
+from itertools import accumulate, chain, islice
 
 from layout.file_names import files_given
 from service.api.layout_cache import KeptLayout, LayoutCache
@@ -25,7 +25,7 @@ log = logging.getLogger("discwright")
 
 JUDGED = {"findings", "good_to_cut"}  # of layout.json: what is said of the disc, and not what it is
 LOCKS = 16  # more than a process has threads that compute
-AT_HAND = 4  # sets of discs; a megabyte or two each
+AT_HAND_DISCS = 16  # discs, or the last set alone where it has more; one takes 200 kB to 700 kB of memory, measured
 
 
 class LayoutDesk:
@@ -268,7 +268,12 @@ class LayoutDesk:
         computed: tuple[Layout, ...] = self._planner.lay_out_discs(
             inputs.tune, *documents, self._clock, most_s=self._most_s
         )
-        self._at_hand = (computed, *self._at_hand)[:AT_HAND]  # one that another thread adds meanwhile may be lost
+        before = self._at_hand
+        counts = accumulate(len(discs) for discs in (computed, *before))
+        fitting = [
+            discs for discs, count in zip(before, islice(counts, 1, None), strict=True) if count <= AT_HAND_DISCS
+        ]
+        self._at_hand = (computed, *fitting)  # one that another thread adds meanwhile may be lost
         return computed
 
     def _cut_short(self, inputs: Inputs, computed: tuple[Layout, ...]) -> bool:

@@ -14,6 +14,7 @@ import pytest
 
 from layout import walk
 from layout.documents import Settings, shipped_cutter, shipped_movement
+from service.api.desk import AT_HAND_DISCS
 from service.limits import Limits
 from tests.service import shop
 from tests.service.api.conftest import ClientFor
@@ -148,6 +149,18 @@ class WanderingPlanner(FakePlanner):
         layouts = super().lay_out_discs(*given, **named)
         self.starts.append(float(len(self.starts)))
         return tuple(replace(layout, record={**layout.record, "from_s": self.starts[-1]}) for layout in layouts)
+
+
+@pytest.mark.parametrize(("between", "searches"), [(AT_HAND_DISCS - 1, 2), (AT_HAND_DISCS, 3)])
+def test_as_many_discs_as_are_said_are_at_hand_however_they_were_asked_for(
+    client: Client, planner: FakePlanner, between: int, searches: int
+) -> None:
+    first = client.post_tune().json["links"]
+    client.post_parts({"tune": (BytesIO(TUNE), "a.mid"), "settings": json.dumps({"discs": between})})
+
+    client.get(first["disc.dxf"])
+
+    assert planner.laid_out_count == searches
 
 
 def test_a_layout_that_comes_to_another_disc_gives_no_file_and_is_kept_no_longer(
