@@ -11,7 +11,7 @@ from urllib.parse import urlencode
 from flask import Blueprint, Request, Response, request
 
 from layout.documents import Settings
-from layout.file_names import CUTTING_FILES, FILES, TOLD_FILES, files_for
+from layout.file_names import CUTTING_FILES, FILES, HEARING_FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
@@ -19,7 +19,7 @@ from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import HEARING_FILES, Heard, plucks_response, sound_response
+from service.api.hearings import Heard, plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
