@@ -16,6 +16,7 @@ FILES = (
     "making.json",
 )
 TOLD_FILES = ("layout.json", "report.json")  # what a layout tells without a plan of how it is cut
+HEARING_FILES = ("hearing.wav", "hearing.mid")  # how a disc sounds: to be had of each, made when asked for
 PLAN_FILE, PARTS_FILE = "sheets.json", "parts.csv"  # of a sheet job, beside a drawing for each sheet
 
 

@@ -77,7 +77,7 @@ class Limits:
         3600, "seconds", "age at which a file left half-written in the cache by a stopped worker is removed"
     )
     file_max_age_s: int = limit(
-        86_400, "seconds", "how long a client may keep a file without asking: a day, as its bytes never change"
+        86_400, "seconds", "how long a client may keep a file without asking: a day, as it is of the same disc"
     )
     drained_bytes: int = limit(
         16 * MIB, "bytes", "how much of a refused body is still read, so that the sender gets to read the answer"

@@ -6,12 +6,13 @@ files of a layout that no process has at hand are made by laying it out again, a
 layout that was told, byte for byte. A search that time stopped need not, so that its files are all made at once.
 """
 
+import json
 import logging
 import threading
 import time
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
-from itertools import chain
+from itertools import accumulate, chain, islice
 
 from layout.file_names import files_given
 from service.api.layout_cache import KeptLayout, LayoutCache
@@ -22,8 +23,9 @@ from service.planner import AnyPlanner, Layout
 
 log = logging.getLogger("discwright")
 
+JUDGED = {"findings", "good_to_cut"}  # of layout.json: what is said of the disc, and not what it is
 LOCKS = 16  # more than a process has threads that compute
-AT_HAND = 4  # sets of discs; a megabyte or two each
+AT_HAND_DISCS = 16  # discs, or the last set alone where it has more; one takes 200 kB to 700 kB of memory, measured
 
 
 class LayoutDesk:
@@ -50,6 +52,8 @@ class LayoutDesk:
         self._cache = cache
         self._at_hand: tuple[tuple[Layout, ...], ...] = ()  # so that files of what was just made are soon there
         self._making = tuple(threading.Lock() for _ in range(LOCKS))  # so that two who ask at a time make them once
+
+        self._others: dict[str, ProblemError] = {}  # not the same again, and not searched for twice
 
     @property
     def program(self) -> str:
@@ -92,11 +96,11 @@ class LayoutDesk:
     def find(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
         """The layout kept under a fingerprint for an owner, else for nobody in particular, or None.
 
-        What an earlier version of the program kept is laid out again by this one where that gives the same layout: it
-        does where the engine is the same, whose version is part of the fingerprint.
+        What an earlier version of the program kept is laid out again by this one, and given where the engine is the
+        same, no search was stopped by time, and all that both tell of the disc is alike, findings apart.
 
         Raises:
-            ProblemError: An earlier engine laid it out.
+            ProblemError: An earlier engine laid it out, or it need not be the same disc.
             LayoutError: An earlier version took what this one does not.
         """
         kept, is_current = self.find_any(fingerprint, owner_id)
@@ -104,27 +108,76 @@ class LayoutDesk:
             return kept
         read, number = kept.inputs.read(), kept.disc_number
         documents = (read.movement, read.cutter, read.settings)
-        if self._planner.fingerprint_of(kept.inputs.tune, *documents, number) == fingerprint:
-            return self._again(kept)
-        address = f"/v1/layouts/{fingerprint}"
-        raise ProblemError(
-            name="layout-outdated",
-            detail=f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter "
-            "that ships in another revision now; its tune, documents and settings are kept",
-            more={"again": f"{address}/again", "settings": f"{address}/settings.json"},
-        )
+        if self._planner.fingerprint_of(kept.inputs.tune, *documents, number) != fingerprint:
+            raise _outdated(
+                kept,
+                f"{fingerprint} was laid out by an earlier version of the engine, or from a movement or a cutter that "
+                "ships in another revision now; its tune, documents and settings are kept",
+            )
+        if kept.stopped_by_time:
+            raise _outdated(
+                kept,
+                f"{fingerprint} was laid out by an earlier version of the program, and time stopped the search for it, "
+                "so that it may come to another disc; its tune, documents and settings are kept",
+            )
+        return self._same_again(kept)
 
     def lay_out_again(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
         """The layout of a fingerprint, or what this version makes of the same where an earlier one kept it; or None.
 
         Raises:
+            ProblemError: The service stopped the search for it, so that it is not kept.
             LayoutError: An earlier version took what this one does not.
         """
         kept, is_current = self.find_any(fingerprint, owner_id)
-        return kept if kept is None or is_current else self._again(kept)
+        if kept is None or is_current:
+            return kept
+        with self._lock_of(kept):
+            discs = self.lay_out_discs(kept.inputs, kept.owner_id)
+        again = discs[kept.disc_number - 1]
+        is_stopped = any(disc.stopped_by_time for disc in discs)
+        if is_stopped and self._cache.get(again.fingerprint, again.owner_id) is None:
+            raise self._cut_short_again(kept)
+        return again
 
-    def _again(self, kept: KeptLayout) -> KeptLayout:
-        return self.lay_out_discs(kept.inputs, kept.owner_id)[kept.disc_number - 1]
+    def _same_again(self, kept: KeptLayout) -> KeptLayout:
+        """What an earlier version kept, made by this one and kept from now on, if it is the same disc."""
+        with self._lock_of(kept):
+            made = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made it
+            if made is not None:
+                return made
+            if kept.fingerprint not in self._others:
+                computed = self._at_hand_of(kept) or self._compute(kept.inputs)
+                laid_out = computed[kept.disc_number - 1]
+                if any(one.stopped == "time" for one in computed):
+                    self._others[kept.fingerprint] = self._cut_short_again(kept)
+                elif not _same_disc(kept.files, self._planner.told_of(laid_out)):
+                    self._others[kept.fingerprint] = _outdated(
+                        kept,
+                        f"an earlier version of the program laid {kept.fingerprint} out, and this one comes to another "
+                        "disc; its tune, documents and settings are kept",
+                    )
+                else:
+                    again = self._kept(laid_out, kept.inputs, kept.owner_id)
+                    self._cache.put(again)
+                    return again
+            refusal = self._others[kept.fingerprint]
+            raise ProblemError(name=refusal.name, detail=refusal.detail, more=refusal.more)
+
+    def _cut_short_again(self, kept: KeptLayout) -> ProblemError:
+        return _outdated(
+            kept,
+            f"an earlier version of the program laid {kept.fingerprint} out, and the search for it was stopped after "
+            f"{self._most_s} s now, so that it may be another disc; send its settings with a shorter time_limit_s",
+        )
+
+    def _at_hand_of(self, kept: KeptLayout) -> tuple[Layout, ...]:
+        sets = (discs for discs in self._at_hand if any(_names(one, kept) for one in discs))
+        return next(sets, ())
+
+    def _lock_of(self, kept: KeptLayout) -> threading.Lock:
+        """One for all discs of a set, as they are computed together."""
+        return self._making[hash(kept.inputs) % LOCKS]
 
     def find_any(self, fingerprint: str, owner_id: str | None = None) -> tuple[KeptLayout | None, bool]:
         """A layout with what it was made from, whichever version made it, and whether that was this one."""
@@ -167,7 +220,7 @@ class LayoutDesk:
             return self._planner.files_of(self._laid_out(kept), not_good=reason)
         if kept.has_all_files:
             return kept.files
-        with self._making[hash(kept.fingerprint) % LOCKS]:
+        with self._lock_of(kept):
             other = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made them
             if other is not None and other.has_all_files and other.inputs == kept.inputs:
                 return other.files
@@ -177,10 +230,17 @@ class LayoutDesk:
 
     def _laid_out(self, kept: KeptLayout) -> Layout:
         """A kept layout with all that is known of it: at hand, or laid out again."""
-        for laid_out in chain(chain.from_iterable(self._at_hand), self._anew(kept.inputs)):
-            is_it = laid_out.fingerprint == kept.fingerprint
-            if is_it and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
+        at_hand = [laid_out for laid_out in chain.from_iterable(self._at_hand) if _names(laid_out, kept)]
+        for laid_out in at_hand or self._compute(kept.inputs):  # another disc is not searched for twice
+            if _names(laid_out, kept) and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
                 return laid_out
+        if kept.has_all_files:
+            raise _outdated(
+                kept,
+                f"to be marked with the reason {kept.fingerprint} was laid out again and came to another disc, as a "
+                "search may that time stopped; what is kept of it stays. Send its settings with a longer time_limit_s, "
+                "or without one, and give the reason there",
+            )
         log.warning("laid out again, it is another disc, and kept no longer: %s", kept.fingerprint)
         self._cache.let_go(kept.fingerprint, kept.owner_id)
         raise ProblemError(
@@ -208,15 +268,32 @@ class LayoutDesk:
         computed: tuple[Layout, ...] = self._planner.lay_out_discs(
             inputs.tune, *documents, self._clock, most_s=self._most_s
         )
-        self._at_hand = (computed, *self._at_hand)[:AT_HAND]  # one that another thread adds meanwhile may be lost
+        before = self._at_hand
+        counts = accumulate(len(discs) for discs in (computed, *before))
+        fitting = [
+            discs for discs, count in zip(before, islice(counts, 1, None), strict=True) if count <= AT_HAND_DISCS
+        ]
+        self._at_hand = (computed, *fitting)  # one that another thread adds meanwhile may be lost
         return computed
-
-    def _anew(self, inputs: Inputs) -> Iterator[Layout]:
-        """The layouts of these inputs, computed when the first is asked for."""
-        yield from self._compute(inputs)
 
     def _cut_short(self, inputs: Inputs, computed: tuple[Layout, ...]) -> bool:
         """Whether the service's limit, and not the settings', has stopped the search for these layouts."""
         asked_s = inputs.read().settings.time_limit_s
         by_service = asked_s is None or asked_s > self._most_s
         return by_service and any(layout.stopped == "time" for layout in computed)
+
+
+def _names(laid_out: Layout, kept: KeptLayout) -> bool:
+    return laid_out.fingerprint == kept.fingerprint
+
+
+def _same_disc(before: Mapping[str, bytes], now: Mapping[str, bytes]) -> bool:
+    """Whether two versions tell the same disc, by all that both tell; how it is judged may change."""
+    old, new = (json.loads(files["layout.json"]) for files in (before, now))
+    return all(old[name] == new[name] for name in (old.keys() & new.keys()) - JUDGED)
+
+
+def _outdated(kept: KeptLayout, why: str) -> ProblemError:
+    address = f"/v1/layouts/{kept.fingerprint}"
+    more = {"again": f"{address}/again", "settings": f"{address}/settings.json"}
+    return ProblemError(name="layout-outdated", detail=why, more=more)

@@ -13,7 +13,6 @@ from service.api.request_models import read_arguments
 from service.api.serving import Served, served
 from service.media_types import MIDI_MEDIA_TYPE, WAV_MEDIA_TYPE
 
-HEARING_FILES = ("hearing.wav", "hearing.mid")  # to be had of every disc; made when asked for
 LAYOUT_ENDING = "_layout.json"
 
 

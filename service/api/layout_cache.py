@@ -65,6 +65,11 @@ class KeptLayout:
         return not set(self.files) <= set(TOLD_FILES)
 
     @property
+    def stopped_by_time(self) -> bool:
+        """Whether time stopped the search for it, so that another search may come to another disc."""
+        return bool(json.loads(self.files["report.json"])["worth"]["stopped"] == "time")
+
+    @property
     def part(self) -> str:
         """Which disc of a set it is, such as "disc 2 of 3"; "" for one alone."""
         return "" if self.disc_count == 1 else f"disc {self.disc_number} of {self.disc_count}"

@@ -11,7 +11,7 @@ from urllib.parse import urlencode
 from flask import Blueprint, Request, Response, request
 
 from layout.documents import Settings
-from layout.file_names import CUTTING_FILES, FILES, TOLD_FILES, files_for
+from layout.file_names import CUTTING_FILES, FILES, HEARING_FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
 from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
@@ -19,7 +19,7 @@ from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
 from service.api.desk import LayoutDesk
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import HEARING_FILES, Heard, plucks_response, sound_response
+from service.api.hearings import Heard, plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
@@ -234,7 +234,9 @@ class LayoutTeller:
         response.headers["Content-Disposition"] = content_disposition(
             _named(kept, not_good=marked), file_name, how="inline" if is_picture else "attachment"
         )
-        response.headers["Cache-Control"] = f"private, max-age={self._limits.file_max_age_s}, immutable"
+        # Of one disc all the while, though another version of the program may draw it otherwise: not immutable.
+        age = "no-cache" if kept.stopped_by_time else f"max-age={self._limits.file_max_age_s}"
+        response.headers["Cache-Control"] = f"private, {age}"
         response.set_etag(tag)
         return response
 
@@ -244,6 +246,8 @@ class LayoutTeller:
 
     def _tag(self, kept: KeptLayout, what: str, reason: str | None) -> str:
         mark = "" if kept.good_to_cut or reason is None else "-" + hashlib.sha256(reason.encode()).hexdigest()[:16]
+        if kept.stopped_by_time:  # let go and searched for again, it may be another disc under the same fingerprint
+            mark += "-" + hashlib.sha256(kept.files["layout.json"]).hexdigest()[:16]
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
 
 

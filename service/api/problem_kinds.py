@@ -78,9 +78,9 @@ KINDS = (
     ProblemKind(
         name="layout-outdated",
         status=410,
-        title="An earlier version laid this disc out",
-        what_to_do="POST the document at settings to the address at again: the disc is laid out anew from the same "
-        "tune and documents, under a fingerprint of its own. Look at it before it is cut: it may be another disc.",
+        title="This disc cannot be made again as it was laid out",
+        what_to_do="detail says why. POST the document at settings to the address at again: the disc is laid out anew "
+        "from the same tune and documents. Look at it before it is cut: it may be another disc.",
     ),
     ProblemKind(
         name="hearing-too-long",

@@ -6,12 +6,13 @@ from typing import Any
 
 from flask import Blueprint, Response, request
 
+from layout.file_names import HEARING_FILES
 from service.api.answers import json_response
 from service.api.asking import open_but_counted
 from service.api.bodies import body_of
 from service.api.describing import describes
 from service.api.hearing_shelf import HearingShelf
-from service.api.hearings import HEARING_FILES, plucks_response, sound_response
+from service.api.hearings import plucks_response, sound_response
 from service.api.models.proofs import VerdictBody
 from service.api.operations import hearings, proofs
 from service.api.order_files import file_of, file_response, heard_of

@@ -4,7 +4,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from layout.file_names import FILES
+from layout.file_names import FILES, HEARING_FILES
 from service.api.order_answers import file_address
 from service.orders.states import State
 from service.orders.views import OrderView, PlanView
@@ -13,7 +13,6 @@ from service.pages.disc_told import FindingTold, findings_of
 from service.pages.texts import text_of
 
 MINUTE_S, HOUR_S = 60, 3600
-SOUNDS = ("hearing.wav", "hearing.mid")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -109,7 +108,7 @@ def files_told(order: OrderView, told: Mapping[str, Any]) -> FilesTold | None:
                 disc,
                 (
                     *(_file(file, is_given=is_given) for file in files if file["disc"] == disc),
-                    *(_sound(order.id, plan.revision, disc, name) for name in SOUNDS),
+                    *(_sound(order.id, plan.revision, disc, name) for name in HEARING_FILES),
                 ),
             )
             for disc in discs

@@ -234,7 +234,8 @@ class FakePlanner:
 
     def told_of(self, laid_out: FakeLayout, *, not_good: str | None = None) -> dict[str, bytes]:
         record = laid_out.record | {"despite_findings": None if laid_out.good_to_cut else not_good}
-        told = {"layout.json": record, "report.json": REPORT}
+        report = REPORT | {"worth": REPORT["worth"] | {"stopped": laid_out.stopped}}
+        told = {"layout.json": record, "report.json": report}
         return {name: json.dumps(content).encode() for name, content in told.items()}
 
     def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> FakeReading:

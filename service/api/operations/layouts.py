@@ -77,6 +77,7 @@ MAKE = Operation(
     problems=(
         *("tune-missing", "midi-unreadable", "document-invalid", "rulings-contradict", "not-good-to-cut"),
         *("movement-unknown", "cutter-unknown", "parameter-missing", "multipart-unreadable", "not-acceptable"),
+        "layout-outdated",
     ),
     examples=(
         Example(status=201, query={"movement": "fernhollow-31"}, media_type=MIDI, body=SMALL_TUNE),
@@ -170,7 +171,7 @@ AGAIN = Operation(
             headers=(ETAG, LOCATION, ITEMS),
         ),
     ),
-    problems=("layout-unknown", "document-invalid", "rulings-contradict", "midi-unreadable"),
+    problems=("layout-unknown", "layout-outdated", "document-invalid", "rulings-contradict", "midi-unreadable"),
     examples=(
         Example(
             status=201,

@@ -14,6 +14,7 @@ import pytest
 
 from layout import walk
 from layout.documents import Settings, shipped_cutter, shipped_movement
+from service.api.desk import AT_HAND_DISCS
 from service.limits import Limits
 from tests.service import shop
 from tests.service.api.conftest import ClientFor
@@ -150,6 +151,18 @@ class WanderingPlanner(FakePlanner):
         return tuple(replace(layout, record={**layout.record, "from_s": self.starts[-1]}) for layout in layouts)
 
 
+@pytest.mark.parametrize(("between", "searches"), [(AT_HAND_DISCS - 1, 2), (AT_HAND_DISCS, 3)])
+def test_as_many_discs_as_are_said_are_at_hand_however_they_were_asked_for(
+    client: Client, planner: FakePlanner, between: int, searches: int
+) -> None:
+    first = client.post_tune().json["links"]
+    client.post_parts({"tune": (BytesIO(TUNE), "a.mid"), "settings": json.dumps({"discs": between})})
+
+    client.get(first["disc.dxf"])
+
+    assert planner.laid_out_count == searches
+
+
 def test_a_layout_that_comes_to_another_disc_gives_no_file_and_is_kept_no_longer(
     client_for: ClientFor, tmp_path: Path
 ) -> None:
@@ -161,6 +174,25 @@ def test_a_layout_that_comes_to_another_disc_gives_no_file_and_is_kept_no_longer
     assert (refused.status_code, refused.json["type"]) == (404, "/problems/layout-unknown")
     assert "was laid out again and came to another disc, so that it is kept no longer" in refused.json["detail"]
     assert kept_in(tmp_path) == []
+
+
+def test_a_reason_takes_no_kept_disc_away_whose_search_time_stopped(client_for: ClientFor, tmp_path: Path) -> None:
+    one = client_for(WanderingPlanner(findings=(THIN_WEB,), needs_s=2))
+    planner = WanderingPlanner(findings=(THIN_WEB,), needs_s=2, starts=[0.0])
+    made = one.post_parts({"tune": (BytesIO(TUNE), "a.mid"), "settings": '{"time_limit_s": 1}'}).json
+    other, address = client_for(planner), f"/v1/layouts/{made['fingerprint']}"
+    before = [path.read_bytes() for path in kept_in(tmp_path)]
+
+    refused = [other.get(f"{address}{file}?despite_findings=trial") for file in ("/disc.dxf", "", "/layout.json")]
+
+    assert [(answer.status_code, answer.json["type"]) for answer in refused] == [(410, "/problems/layout-outdated")] * 3
+    assert "came to another disc, as a search may that time stopped" in refused[0].json["detail"]
+    assert refused[0].json["settings"] == f"{address}/settings.json"
+    assert planner.laid_out_count == 1  # and is not searched for again and again
+    assert [path.read_bytes() for path in kept_in(tmp_path)] == before
+    assert other.get(address).json == made
+    marked = one.get(f"{address}/disc.dxf?despite_findings=trial").data  # where it was made, it is at hand
+    assert marked == b"disc.dxf of Harvest Dance NOT GOOD TO CUT: trial"
 
 
 def test_what_time_stopped_has_its_files_made_at_once(client_for: ClientFor) -> None:

@@ -245,7 +245,7 @@ def test_files_may_be_kept_by_the_client_and_the_layout_s_answer_asks_again(clie
 
     file = client.get(made.json["links"]["disc.dxf"])
 
-    assert file.headers["Cache-Control"] == "private, max-age=86400, immutable"
+    assert file.headers["Cache-Control"] == "private, max-age=86400"
     assert made.headers["Cache-Control"] == "no-cache"
 
 
