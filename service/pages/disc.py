@@ -10,6 +10,7 @@ from urllib.parse import urlencode
 
 from flask import Blueprint, Request, Response, request
 
+from layout.file_names import HEARING_FILES
 from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.asking import asker_or_none, open_on_loopback
@@ -148,7 +149,8 @@ def _shown(desk: LayoutDesk, kept: KeptLayout, reason: str | None) -> ShownDisc:
         report=json.loads(kept.files["report.json"]),
         movement=read.movement,
         cutter=read.cutter,
-        files={name: f"{base}/{name}{asking}" for name in desk.names_given(kept, reason)},
+        files={name: f"{base}/{name}{asking}" for name in desk.names_given(kept, reason)}
+        | {name: f"{base}/{name}" for name in HEARING_FILES},
         hearing={of: f"{base}/hearing.wav?of={of}" for of in ("disc", "written")},
         despite_findings=given_despite,
         asks_reason=not kept.good_to_cut,

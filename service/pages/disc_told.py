@@ -4,7 +4,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from layout.file_names import files_for
+from layout.file_names import HEARING_FILES, files_for
 from service.pages.disc_shown import Record, ShownDisc
 from service.pages.texts import text_of
 
@@ -109,7 +109,7 @@ def files_of(shown: ShownDisc) -> tuple[FileTold, ...]:
             what=text_of(f"disc.file_{_key(name)}"),
             who=text_of(f"disc.file_{_key(name)}_who"),
         )
-        for name in files_for(shown.cutter)
+        for name in (*files_for(shown.cutter), *HEARING_FILES)
         if name in shown.files or name in shown.kept_back
     )
 

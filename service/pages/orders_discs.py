@@ -7,6 +7,7 @@ from pydantic import Field
 
 from layout.documents import Cutter, read_cutter, read_movement
 from layout.documents.reading import Part
+from layout.file_names import HEARING_FILES
 from service.api.models.orders import MOST_REVISION
 from service.api.order_answers import file_address
 from service.api.order_files import file_of
@@ -49,7 +50,8 @@ def disc_of_plan(parts: Parts, order_id: str, plan: PlanView, disc: int) -> Show
             file.name: file_address(order_id, plan.revision, disc, file.name)
             for file in plan.files
             if file.disc == disc and (given or not file.is_for_cutting)
-        },
+        }
+        | {name: file_address(order_id, plan.revision, disc, name) for name in HEARING_FILES},
         hearing={of: f"{base}?of={of}" for of in ("disc", "written")},
         despite_findings=None if layout["good_to_cut"] else plan.release_reason,
     )

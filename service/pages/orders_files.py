@@ -140,7 +140,7 @@ def _file(file: Mapping[str, Any], *, is_given: bool) -> FileOfPlan:
 
 def _sound(order_id: str, revision: int, disc: int, name: str) -> FileOfPlan:
     """How a disc sounds: made from the plan whenever it is asked for, so that it has no size of its own."""
-    key = f"orders.file_{name.replace('.', '_')}"
+    key = f"disc.file_{name.replace('.', '_')}"
     return FileOfPlan(
         name=name,
         address=file_address(order_id, revision, disc, name),

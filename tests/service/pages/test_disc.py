@@ -84,7 +84,7 @@ def test_a_disc_says_that_it_is_good_to_cut_and_every_file_it_links_to_is_there(
     assert [link.rsplit("/", 1)[1] for link in files] == [
         "settings.json",
         *("disc.dxf", "record.dxf", "disc.svg", "hits.csv", "work-sheet.pdf", "layout.json", "report.json"),
-        "making.json",
+        *("making.json", "hearing.wav", "hearing.mid"),
     ]
     assert {client.get(link).status_code for link in files} == {200}
     told = client.get(f"/v1/layouts/{fingerprint}/layout.json").get_json()
