@@ -157,21 +157,19 @@ def read_json(text: str | bytes, *, document: str) -> tuple[Json, dict[str, Stat
     """The JSON value of a text with every stated number made plain, and what was stated.
 
     Args:
-        text: The document as it is written.
+        text: The document as it is written; bytes in UTF-8, or in UTF-16 or UTF-32, which their zeros tell.
         document: Word for error messages.
 
     Returns:
         The plain value, and what each stated number is worth by the JSON pointer of the number.
 
     Raises:
-        DocumentError: Not UTF-8 JSON, nested too deep, a name given twice, a number no double holds, half a
+        DocumentError: Not JSON, nested too deep, a name given twice, a number no double holds, half a
             character, or a worth that is not valid. RFC 8259 has neither NaN nor infinities.
     """
     try:
-        # json alone would take bytes in UTF-16 and UTF-32 too, which no reader after us expects.
-        words = text.decode("utf-8-sig", "surrogatepass") if isinstance(text, bytes) else text
         value = json.loads(
-            words, parse_constant=_no_number, parse_int=_whole, parse_float=_real, object_pairs_hook=_without_doubles
+            text, parse_constant=_no_number, parse_int=_whole, parse_float=_real, object_pairs_hook=_without_doubles
         )
         plain, stated = _take_apart(value, "", MOST_LEVELS)
     except (ValueError, RecursionError) as error:

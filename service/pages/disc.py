@@ -131,7 +131,7 @@ def _ordering(kept: KeptLayout, asker: Asker | None) -> Ordering:
         if isinstance(source, Shipped):
             named[name] = source.id
         else:
-            brought[name] = source.text.decode()
+            brought[name] = source.text.decode(json.detect_encoding(source.text))  # as it was read
     return Ordering(
         may=asker is not None,  # a key without the scope is shown no layout at all
         of=kept.disc_count,

@@ -76,7 +76,7 @@ def test_a_message_goes_out_within_about_a_second(parts: Parts) -> None:
 
 
 def test_hooks_that_hang_hold_up_no_others(parts: Parts) -> None:
-    parts = reaching_loopback(parts, timeout_s=8)
+    parts = reaching_loopback(parts, timeout_s=25)
     shop = add_owner(parts, "the shop", is_shop=True)
     never = threading.Event()
 

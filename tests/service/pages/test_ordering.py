@@ -80,11 +80,15 @@ def test_a_disc_whose_documents_ship_is_ordered_by_their_ids(client: FlaskClient
     assert documents_in(html) == {"order": {"movement": "fernhollow-31", "cutter": "fibre-laser"}, "parts": {}}
 
 
-@pytest.mark.parametrize("source", ["shipped", "own"])
+def _written(source: str, text: str) -> bytes | None:
+    return {"shipped": None, "own": text.encode(), "own in UTF-16": text.encode("utf-16")}[source]
+
+
+@pytest.mark.parametrize("source", ["shipped", "own", "own in UTF-16"])
 def test_what_the_page_brings_makes_an_order_of_the_disc_that_was_shown(client: FlaskClient, source: str) -> None:
     who = client.orders  # type: ignore[attr-defined]
     movement = {**json.loads(shipped_text("mossbrook-67")), "id": "own-67", "title": "Of our own"}
-    fingerprint = made(client, who, json.dumps(movement).encode() if source == "own" else None)
+    fingerprint = made(client, who, _written(source, json.dumps(movement)))
     told = documents_in(client.get(f"/discs/{fingerprint}", headers={**HTML, **who}).text)
 
     brought = {
@@ -100,7 +104,7 @@ def test_what_the_page_brings_makes_an_order_of_the_disc_that_was_shown(client: 
     placed = client.post("/v1/orders", data=form, headers=who)
 
     assert placed.status_code == 202, placed.text
-    assert placed.get_json()["movement"]["id"] == ("own-67" if source == "own" else "fernhollow-31")
+    assert placed.get_json()["movement"]["id"] == ("fernhollow-31" if source == "shipped" else "own-67")
     assert placed.get_json()["cutter"]["id"] == "fibre-laser"
     assert (placed.get_json()["quantity"], brought["tune.mid"], json.loads(brought["settings.json"])) == (
         2,
