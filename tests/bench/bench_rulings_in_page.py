@@ -58,18 +58,21 @@ def main() -> None:
             page = browser.new_page()
             page.goto(f"{service.url}/discs/{made.json['fingerprint']}")
             page.wait_for_selector(READY)
-            took_ms = sorted(_taken_out_ms(page) for _ in range(RULINGS))
+            took_ms = sorted(_taken_out_ms(page, STEPS * (number + 1)) for number in range(RULINGS))
             rows.append((movement, f"{median(took_ms):.0f}", f"{took_ms[-1]:.0f}", f"{GOAL_MS:.0f}"))
         browser.close()
     say(f"{RULINGS} rulings on each disc, milliseconds from the click to the new disc drawn")
     say_table(("movement", "median", "worst", "goal"), rows)
 
 
-def _taken_out_ms(page: Page) -> float:
+def _taken_out_ms(page: Page, steps: int) -> float:
+    """Take out the first projection that lies so many steps or more from the beginning of the turn."""
     page.focus("#stage")
-    for _ in range(STEPS):
+    page.keyboard.press("Home")
+    for _ in range(steps):
         page.keyboard.press("ArrowRight")
-    page.wait_for_selector("#rule-out")
+    while page.locator("#rule-out").count() == 0:
+        page.keyboard.press("ArrowRight")
     return float(page.evaluate(TAKE_OUT))
 
 
