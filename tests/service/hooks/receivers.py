@@ -52,6 +52,8 @@ def listening(receiver: Receiver, tls: ssl.SSLContext | None = None) -> Iterator
             """Say nothing."""
 
     class Server(ThreadingHTTPServer):
+        request_queue_size = 128  # the library's five lose connections where twenty come at once
+
         def handle_error(self, request: object, client_address: object) -> None:
             """Say nothing of connections that break: tests break them."""
 
