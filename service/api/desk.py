@@ -52,8 +52,8 @@ class LayoutDesk:
         self._cache = cache
         self._at_hand: tuple[tuple[Layout, ...], ...] = ()  # so that files of what was just made are soon there
         self._making = tuple(threading.Lock() for _ in range(LOCKS))  # so that two who ask at a time make them once
-
-        self._others: dict[str, ProblemError] = {}  # not the same again, and not searched for twice
+        # Of discs that an earlier version kept, not searched for twice; no more than that version left in the cache.
+        self._others: dict[str, ProblemError] = {}
 
     @property
     def program(self) -> str:
