@@ -75,7 +75,7 @@ def _track(notes: list[tuple[int, int, int]], channel: int, chance: random.Rando
 
 @cache
 def large_movement(count: int) -> Movement:
-    """mossbrook-67 with a disc and a turn for `large_tune(count)`; its drive as much stronger as its lever is longer."""
+    """mossbrook-67 with a disc and a turn for `large_tune(count)`; its drive grows with its lever."""
     document = shipped_movement("mossbrook-67").model_dump(mode="json")
     first_mm, last_mm = document["tracks"][0]["radius_mm"], document["tracks"][-1]["radius_mm"]
     outwards_mm = first_mm * max(0.0, count / BASE_COUNT - 1)
