@@ -1,5 +1,7 @@
 """The near neighbours that a round trip is made of, against all distances; and the trip it begins with."""
 
+from itertools import pairwise
+
 import numpy as np
 from hypothesis import given
 from hypothesis import strategies as st
@@ -47,5 +49,5 @@ def test_the_first_trip_goes_round_by_what_saves_most() -> None:
 
     trip = first_trip(places_mm, near_stops(places_mm, [set() for _ in places_mm]))
 
-    beside = {frozenset(pair) for pair in zip(trip, trip[1:], strict=False)}
+    beside = {frozenset(pair) for pair in pairwise(trip)}
     assert {frozenset((0, 2)), frozenset((1, 3))} <= beside
