@@ -28,6 +28,7 @@ _HALF_TURN_DEG = 180
 # Below and above the centre first, then ever more to the sides.
 _AROUND_DEG = sorted(range(0, 360, STEP_DEG), key=lambda angle: (abs(abs(angle - 180) - 90), -angle))
 
+PLACES_AT_ONCE = 500  # places; the first that fits is often an early one, and a call for each would cost more
 BLOCKS_KEPT = 512  # blocks; those of a few drawings, so that each is drawn once however many places are tried
 
 
@@ -180,8 +181,16 @@ def _block(texts: tuple[str, ...], height_mm: float) -> tuple[_Line, ...]:
 
 
 def _first_fit_mm(room: BaseGeometry, centres_mm: FloatArray, block: tuple[_Line, ...]) -> FloatArray | None:
-    left_mm = centres_mm
-    for line in block:
-        low, high = line.low_mm + left_mm, line.high_mm + left_mm
-        left_mm = left_mm[shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))]
-    return left_mm[0] if len(left_mm) else None
+    """The first centre round which every line's box lies in the room; None where there is none."""
+    for begin in range(0, len(centres_mm), PLACES_AT_ONCE):
+        left_mm = centres_mm[begin : begin + PLACES_AT_ONCE]
+        # Corners are cheap to look up, whole boxes are not: most places fail at a corner.
+        for line, is_high in product(block, product((False, True), repeat=2)):
+            corner_mm = np.where(is_high, line.high_mm, line.low_mm)
+            left_mm = left_mm[shapely.intersects_xy(room, left_mm + corner_mm)]
+        for line in block:
+            low, high = line.low_mm + left_mm, line.high_mm + left_mm
+            left_mm = left_mm[shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))]
+        if len(left_mm):
+            return np.asarray(left_mm[0])
+    return None

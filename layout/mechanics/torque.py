@@ -6,13 +6,14 @@ so it is known exactly from its values at them. The greatest always stands just 
 """
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
-from layout.mechanics.drive import lifts_of
+from layout.mechanics.drive import ToothLift, lifts_of
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 _MOMENT_DECIMALS = 9  # of a second: releases nearer than a nanosecond are one, as when arranging
@@ -77,13 +78,7 @@ def torque_over_turn(
     turn_s = turning.revolution_s
     rest_s = turning.start_rad / FULL_TURN_RAD * turn_s
     from_rest_s = np.mod(np.round(np.asarray(sounds_s) + rest_s, _MOMENT_DECIMALS), turn_s)
-    rows = [
-        (pluck, float(from_rest_s[pluck]), min(lift.window_s, turn_s), lift.peak_nmm)
-        for pluck, track in enumerate(track_index.tolist())
-        for lift in lifts[track]
-    ]
-    columns = [np.array([row[column] for row in rows]) for column in range(4)]
-    lifted = _Lifted(pluck=columns[0].astype(np.int64), released_s=columns[1], window_s=columns[2], peak_nmm=columns[3])
+    lifted = _lifted(lifts, track_index, from_rest_s, turn_s)
     touched_s = np.mod(lifted.released_s - lifted.window_s, turn_s)
     moments_s = np.unique(np.concatenate([[0.0, turn_s], touched_s, lifted.released_s]))
     before_nmm, after_nmm = _torques_nmm(lifted, moments_s, turn_s)
@@ -97,23 +92,41 @@ def torque_over_turn(
         at_s=frozen_floats(at_s - rest_s),
         torque_nmm=frozen_floats(torque_nmm),
         peak_nmm=float(before_nmm[peak]),
-        peak_at_s=float(moments_s[peak]) - rest_s if rows else 0.0,
+        peak_at_s=float(moments_s[peak]) - rest_s if len(lifted.pluck) else 0.0,
         peak_plucks=tuple(np.unique(lifted.pluck[until_s < lifted.window_s]).tolist()),
         mean_nmm=math.fsum((lifted.peak_nmm * lifted.window_s / 2).tolist()) / turn_s,
     )
 
 
+def _lifted(
+    lifts: Sequence[Sequence[ToothLift]], track_index: IntArray, from_rest_s: FloatArray, turn_s: float
+) -> _Lifted:
+    """Every tooth of every pluck's track, in the order of the plucks."""
+    count = np.array([len(teeth) for teeth in lifts], dtype=np.int64)
+    begin = np.cumsum(count) - count
+    window_s = np.array([min(lift.window_s, turn_s) for teeth in lifts for lift in teeth], dtype=np.float64)
+    peak_nmm = np.array([lift.peak_nmm for teeth in lifts for lift in teeth], dtype=np.float64)
+    times = count[track_index]
+    pluck = np.repeat(np.arange(len(track_index)), times)
+    lift = begin[track_index][pluck] + np.arange(len(pluck)) - (np.cumsum(times) - times)[pluck]
+    return _Lifted(pluck=pluck, released_s=from_rest_s[pluck], window_s=window_s[lift], peak_nmm=peak_nmm[lift])
+
+
 def _torques_nmm(lifted: _Lifted, moments_s: FloatArray, turn_s: float) -> tuple[FloatArray, FloatArray]:
     """The torque just before and just after each moment, both shape (moments,)."""
-    before_nmm = np.zeros(len(moments_s))
-    dropped_nmm = np.zeros(len(moments_s))
-    for released_s, window_s, peak_nmm in zip(
-        lifted.released_s.tolist(), lifted.window_s.tolist(), lifted.peak_nmm.tolist(), strict=True
-    ):
-        # A tooth released early in the turn may be touched before the end of the one before.
-        for end_s in (released_s, released_s + turn_s):
-            first = int(np.searchsorted(moments_s, end_s - window_s))
-            last = int(np.searchsorted(moments_s, end_s, side="right"))
-            before_nmm[first:last] += peak_nmm * np.maximum(1 - (end_s - moments_s[first:last]) / window_s, 0.0)
-        dropped_nmm[int(np.searchsorted(moments_s, released_s))] += peak_nmm
+    # A tooth released early in the turn may be touched before the end of the one before.
+    end_s = np.column_stack([lifted.released_s, lifted.released_s + turn_s]).ravel()
+    window_s, peak_nmm = np.repeat(lifted.window_s, 2), np.repeat(lifted.peak_nmm, 2)
+    first = np.searchsorted(moments_s, end_s - window_s)
+    length = np.searchsorted(moments_s, end_s, side="right") - first
+    tooth = np.repeat(np.arange(len(end_s)), length)
+    moment = np.arange(len(tooth)) + (first - np.cumsum(length) + length)[tooth]
+    share = np.maximum(1 - (end_s[tooth] - moments_s[moment]) / window_s[tooth], 0.0)
+    before_nmm = _summed(moment, peak_nmm[tooth] * share, len(moments_s))
+    dropped_nmm = _summed(np.searchsorted(moments_s, lifted.released_s), lifted.peak_nmm, len(moments_s))
     return before_nmm, np.maximum(before_nmm - dropped_nmm, 0.0)
+
+
+def _summed(place: IntArray, parts: FloatArray, count: int) -> FloatArray:
+    """Shape (count,). The parts of each place, summed in their order."""
+    return np.asarray(np.bincount(place, weights=parts, minlength=count), dtype=np.float64)
