@@ -58,31 +58,32 @@ def webs_to_the_rim_hold(disc: Disc) -> list[Finding]:
 
     A track whose projections are off the disc leaves no web to speak of; another check says so.
     """
-    rim_mm = disc.movement.disc.outer_diameter_mm / 2
+    rim_mm, reach_mm = disc.movement.disc.outer_diameter_mm / 2, _radial_reach_mm(disc)
     return [
         finding
         for index in disc.used_tracks
         if not _off_disc(disc, index)
-        for finding in _web_to(disc, index, _RIM, rim_mm - _radial_reach_mm(disc, index)[1])
+        for finding in _web_to(disc, index, _RIM, rim_mm - reach_mm[index][1])
     ]
 
 
 def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
     """An error for a track whose openings leave less than the least web to the centre hole; as for the rim."""
-    hole_mm = disc.movement.disc.centre_hole_mm / 2
+    hole_mm, reach_mm = disc.movement.disc.centre_hole_mm / 2, _radial_reach_mm(disc)
     return [
         finding
         for index in disc.used_tracks
         if not _off_disc(disc, index)
-        for finding in _web_to(disc, index, _CENTRE_HOLE, _radial_reach_mm(disc, index)[0] - hole_mm)
+        for finding in _web_to(disc, index, _CENTRE_HOLE, reach_mm[index][0] - hole_mm)
     ]
 
 
 def keep_outs_are_clear(disc: Disc) -> list[Finding]:
     """An error where the openings of a track reach into a ring in which nothing may be cut."""
     findings: list[Finding] = []
+    reach_mm = _radial_reach_mm(disc)
     for index in disc.used_tracks:
-        nearest_mm, farthest_mm = _radial_reach_mm(disc, index)
+        nearest_mm, farthest_mm = reach_mm[index]
         for place, ring in enumerate(disc.movement.keep_out):
             outside_mm, inside_mm = nearest_mm - ring.to_radius_mm, ring.from_radius_mm - farthest_mm
             clear_mm, end = max((outside_mm, "to_radius_mm"), (inside_mm, "from_radius_mm"))
@@ -107,14 +108,14 @@ def keep_outs_are_clear(disc: Disc) -> list[Finding]:
     return findings
 
 
-def _radial_reach_mm(disc: Disc, index: int) -> tuple[float, float]:
-    """Least and greatest distance of a track's openings from the centre: the same for all of them."""
-    radius_mm = disc.turning.radius_mm[[index]]
+def _radial_reach_mm(disc: Disc) -> list[tuple[float, float]]:
+    """For every track the least and greatest distance of its openings from the centre: the same for all of them."""
+    radius_mm, round_mm = disc.turning.radius_mm, disc.pattern.core_round_mm
     pattern, direction = disc.pattern, disc.turning.direction
-    points_mm = on_disc_mm(pattern.core_points_mm, radius_mm, np.zeros(1), direction, pattern.strike_u_mm)
-    nearest_mm = float(shapely.distance(core_geometries(points_mm)[0], shapely.Point(0.0, 0.0)))
-    farthest_mm = float(np.hypot(points_mm[0, :, 0], points_mm[0, :, 1]).max())
-    return nearest_mm - disc.pattern.core_round_mm, farthest_mm + disc.pattern.core_round_mm
+    points_mm = on_disc_mm(pattern.core_points_mm, radius_mm, np.zeros(len(radius_mm)), direction, pattern.strike_u_mm)
+    nearest_mm = shapely.distance(core_geometries(points_mm), shapely.Point(0.0, 0.0)) - round_mm
+    farthest_mm = np.hypot(points_mm[..., 0], points_mm[..., 1]).max(axis=1) + round_mm
+    return list(zip(nearest_mm.tolist(), farthest_mm.tolist(), strict=True))
 
 
 def _web_to(disc: Disc, index: int, edge: tuple[Code, str, str], web_mm: float) -> list[Finding]:

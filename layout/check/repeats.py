@@ -1,6 +1,7 @@
 """Checks along the turn: repeats on each track, dampers, the music's part of the turn and the rest sector."""
 
 import math
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -8,7 +9,7 @@ from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged, told_worth, unsure_advice
 from layout.check.worth import radius_pointer, reach_unsure_mm
 from layout.documents.movement import StarWheel
-from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
 from layout.mechanics.star_wheel import touch_zone_mm
 from layout.mechanics.turning import FULL_TURN_RAD
 from layout.place.disc import Disc
@@ -22,9 +23,10 @@ def star_wheels_keep_up(disc: Disc) -> list[Finding]:
     for index in disc.used_tracks:
         reach_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
         arc_mm = float(disc.turning.engagement_arc_mm[index])
-        for one, two, apart_rad in _neighbours(disc, index):
-            if apart_rad * reach_mm >= arc_mm + _arc_unsure_mm(disc, index, apart_rad):  # nearly all: not worth words
-                continue
+        near = _neighbours(disc, index)
+        for one, two, apart_rad in near.of(
+            near.apart_rad * reach_mm < arc_mm + _arc_unsure_mm(disc, index, near.apart_rad)
+        ):
             findings += judged(_step_apart(disc, index, (one, two), apart_rad * reach_mm), disc.movement)
     return findings[:MOST_FINDINGS]
 
@@ -45,14 +47,14 @@ def _step_apart(disc: Disc, index: int, pair: tuple[int, int], travel_mm: float)
         unit="mm",
         margin=travel_mm - limit_mm + GRAIN_MM,
         rests_on=(),
-        also_unsure=_arc_unsure_mm(disc, index, travel_mm * FULL_TURN_RAD / around_mm),
+        also_unsure=float(_arc_unsure_mm(disc, index, np.array(travel_mm * FULL_TURN_RAD / around_mm))),
         at=_at(disc, pair),
         remedy=APART,
     )
 
 
-def _arc_unsure_mm(disc: Disc, index: int, apart_rad: float) -> float:
-    """How far the travel between two plucks may be off from the arc a step takes.
+def _arc_unsure_mm(disc: Disc, index: int, apart_rad: FloatArray) -> FloatArray:
+    """How far the travel between two plucks may be off from the arc a step takes, for angles between them.
 
     The arc by its own worth; where it is computed, 2R·sin(π/n), by 2·sin(π/n) times that of R. The travel by the
     angle between the plucks times the worth of the track's radius.
@@ -73,13 +75,13 @@ def dampers_recover(disc: Disc) -> list[Finding]:
     for index in disc.used_tracks:
         if index + 1 not in movement.damped_tracks:
             continue
-        for one, two, apart_rad in _neighbours(disc, index):
-            turn = apart_rad / FULL_TURN_RAD
-            apart_s = turn * movement.fastest_revolution_s
-            unsure_s = worth("/damper_recovery_s") + turn * worth("/fastest_revolution_s")
-            if apart_s >= movement.damper_recovery_s + unsure_s:  # nearly all: not worth the words
-                continue
-            findings += judged(_damped_apart(disc, (one, two), apart_s, unsure_s), movement)
+        near = _neighbours(disc, index)
+        turns = near.apart_rad / FULL_TURN_RAD
+        unsure_s = worth("/damper_recovery_s") + turns * worth("/fastest_revolution_s")
+        soon = turns * movement.fastest_revolution_s < movement.damper_recovery_s + unsure_s
+        for (one, two, apart_rad), off_s in zip(near.of(soon), unsure_s[soon].tolist(), strict=True):
+            apart_s = apart_rad / FULL_TURN_RAD * movement.fastest_revolution_s
+            findings += judged(_damped_apart(disc, (one, two), apart_s, off_s), movement)
     return findings[:MOST_FINDINGS]
 
 
@@ -182,16 +184,34 @@ def _at_rest(disc: Disc) -> tuple[FloatArray, FloatArray, FloatArray]:
     return past_rad * disc.radius_mm, zone_mm[disc.track_index, 0], zone_mm[disc.track_index, 1]
 
 
-def _neighbours(disc: Disc, index: int) -> list[tuple[int, int, float]]:
-    """Pairs of projections that follow each other on a track, and the angle between them."""
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Neighbours:
+    """Projections that follow each other on a track, the last and the first over the turn's end too.
+
+    Attributes:
+        one: Shape (n,). Indices of projections, by angle; empty for fewer than two.
+        two: Shape (n,). The next of each.
+        apart_rad: Shape (n,). The angle between both.
+    """
+
+    one: IntArray
+    two: IntArray
+    apart_rad: FloatArray
+
+    def of(self, chosen: BoolArray) -> list[tuple[int, int, float]]:
+        """Some of the pairs; `chosen` has shape (n,). Nearly all pairs are far apart and not worth words."""
+        columns = (self.one[chosen].tolist(), self.two[chosen].tolist(), self.apart_rad[chosen].tolist())
+        return list(zip(*columns, strict=True))
+
+
+def _neighbours(disc: Disc, index: int) -> _Neighbours:
     here: IntArray = np.flatnonzero(disc.track_index == index)
     if len(here) < 2:  # noqa: PLR2004 - one projection has no neighbour on its track
-        return []
+        here = here[:0]
     ranked = here[np.argsort(disc.edge_angle_rad[here], kind="stable")]
     angles = disc.edge_angle_rad[ranked]
-    gaps = np.diff(np.append(angles, angles[0] + FULL_TURN_RAD))
-    following = np.roll(ranked, -1)
-    return [(int(a), int(b), float(gap)) for a, b, gap in zip(ranked, following, gaps, strict=True)]
+    apart_rad = np.diff(np.append(angles, angles[:1] + FULL_TURN_RAD))
+    return _Neighbours(one=ranked, two=np.roll(ranked, -1), apart_rad=apart_rad)
 
 
 def _at(disc: Disc, projections: tuple[int, ...]) -> Place:

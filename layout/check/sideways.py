@@ -105,6 +105,8 @@ def _halves_unsure_mm(disc: Disc) -> float:
 def _slide_unsure_mm(disc: Disc, index: int) -> float:
     """How far the slide may be off by the row's offset: the more of both ways, short of the track's own radius."""
     row_mm, off_mm = disc.movement.gantry_offset_mm, disc.movement.plus_minus("/gantry_offset_mm")
+    if not off_mm:
+        return 0.0
     most_mm = float(disc.turning.radius_mm[index])
     moved_mm = (min(max(row_mm + way * off_mm, -most_mm), most_mm) for way in (-1, 1))
     return max(abs(_slide_mm(disc, index, each) - _slide_mm(disc, index, row_mm)) for each in moved_mm)

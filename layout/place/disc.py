@@ -2,6 +2,8 @@
 
 from dataclasses import dataclass, field
 
+import numpy as np
+
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
 from layout.mechanics.arrays import FloatArray, IntArray
@@ -74,4 +76,4 @@ class Disc:
     @property
     def used_tracks(self) -> list[int]:
         """Places of the tracks that carry a projection, from 0, in rising order."""
-        return sorted({int(index) for index in self.track_index})
+        return [int(index) for index in np.unique(self.track_index)]
