@@ -50,13 +50,14 @@ class Push:
 def pushes_of(problem: Problem, spots: Sequence[int]) -> list[Push]:
     """Every rule of time between chosen spots, no two of one pluck."""
     on_track: dict[int, list[int]] = defaultdict(list)
-    for spot in spots:
-        on_track[int(problem.track[spot])].append(spot)
+    for spot, track_index in zip(spots, problem.track[list(spots)].tolist(), strict=True):
+        on_track[track_index].append(spot)
+    least_ns = problem.least_ns.tolist()
     pushes = []
     for track in on_track.values():
         track.sort()  # spots stand by pluck
-        pushes += [Push(earlier=one, later=two, least_ns=int(problem.least_ns[one])) for one, two in pairwise(track)]
-        round_ns = int(problem.least_ns[track[-1]]) - problem.turn_ns
+        pushes += [Push(earlier=one, later=two, least_ns=least_ns[one]) for one, two in pairwise(track)]
+        round_ns = least_ns[track[-1]] - problem.turn_ns
         pushes.append(Push(earlier=track[-1], later=track[0], least_ns=round_ns, wraps=True))
     pushes += _beside(problem, on_track)
     return pushes
@@ -75,7 +76,7 @@ def moments_kept(
     after: dict[int, list[Push]] = defaultdict(list)
     for push in pushes_of(problem, spots):
         after[push.earlier].append(push)
-    at_ns = {spot: int(problem.earliest_ns[spot]) for spot in spots}
+    at_ns = dict(zip(spots, problem.earliest_ns[list(spots)].tolist(), strict=True))
     if not_before_ns is not None:
         at_ns = {spot: max(earliest_ns, not_before_ns[spot]) for spot, earliest_ns in at_ns.items()}
     pushed_by: dict[int, Push] = {}

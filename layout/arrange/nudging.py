@@ -17,6 +17,7 @@ from layout.arrange.integer_program import Row
 from layout.arrange.linear_program import least_cost
 from layout.arrange.moments_kept import Moments, Push, moments_kept, pushes_of
 from layout.arrange.problem import NS_PER_MS, Problem
+from layout.mechanics.arrays import IntArray
 
 # What each millisecond of a nudge costs, from here on. Up to 6 ms nobody hears it (the just noticeable
 # difference for notes up to 240 ms apart: Friberg and Sundberg, JASA 98, 1995, from memory); up to
@@ -47,7 +48,7 @@ def nudged(problem: Problem, spots: Sequence[int], heavy: Sequence[Sequence[int]
     Raises:
         ValueError: The choice has no moments that keep every rule: a fault of the program.
     """
-    at_ns = {spot: int(problem.asked_ns[spot]) for spot in spots}
+    at_ns = dict(zip(spots, problem.asked_ns[list(spots)].tolist(), strict=True))
     pushes = pushes_of(problem, spots)
     company = _Company(problem, spots, pushes, heavy)
     blocks = _moving(problem, pushes, company)
@@ -69,7 +70,7 @@ def nudged_later(problem: Problem, spots: Sequence[int]) -> dict[int, int]:
     Raises:
         ValueError: As for `nudged`.
     """
-    return _put_right(problem, spots, {spot: int(problem.asked_ns[spot]) for spot in spots})
+    return _put_right(problem, spots, dict(zip(spots, problem.asked_ns[list(spots)].tolist(), strict=True)))
 
 
 class _Company:
@@ -85,9 +86,10 @@ class _Company:
             ):  # one pluck alone on its track pushes itself, once a turn: no matter of nudging
                 self.pushes[push.earlier].append(push)
                 self.pushes[push.later].append(push)
-        self._in_time = sorted((int(problem.asked_ns[spot]), spot) for spot in spots)
-        self._far_ns = 2 * max((_reach_ns(problem, spot) for spot in spots), default=0) + IN_ORDER_NS
-        self._chord_of = {spot: int(problem.chord[problem.pluck[spot]]) for spot in spots}
+        chosen = np.array(spots, dtype=np.int64)
+        self._in_time = sorted(zip(problem.asked_ns[chosen].tolist(), spots, strict=True))
+        self._far_ns = 2 * int(_reaches_ns(problem)[chosen].max(initial=0)) + IN_ORDER_NS
+        self._chord_of = dict(zip(spots, problem.chord[problem.pluck[chosen]].tolist(), strict=True))
         self._chords: dict[int, list[int]] = defaultdict(list)
         for spot, chord in self._chord_of.items():
             self._chords[chord].append(spot)
@@ -129,9 +131,10 @@ def _moving(problem: Problem, pushes: Sequence[Push], company: _Company) -> list
     """
     near: dict[int, list[int]] = defaultdict(list)
     found: list[int] = list(company.heavy)
+    asked_ns, reach_ns = problem.asked_ns.tolist(), _reaches_ns(problem).tolist()
     for push in pushes:
-        spare_ns = int(problem.asked_ns[push.later] - problem.asked_ns[push.earlier]) - push.least_ns
-        if push.earlier != push.later and spare_ns < _reach_ns(problem, push.earlier) + _reach_ns(problem, push.later):
+        spare_ns = asked_ns[push.later] - asked_ns[push.earlier] - push.least_ns
+        if push.earlier != push.later and spare_ns < reach_ns[push.earlier] + reach_ns[push.later]:
             near[push.earlier].append(push.later)
             near[push.later].append(push.earlier)
         if spare_ns < 0 and push.earlier != push.later:
@@ -161,10 +164,9 @@ def _reached(begin: Iterable[int], near: Mapping[int, Iterable[int]]) -> set[int
     return reached
 
 
-def _reach_ns(problem: Problem, spot: int) -> int:
-    """How far a spot may be nudged, the farther way."""
-    asked_ns = problem.asked_ns[spot]
-    return int(max(problem.latest_ns[spot] - asked_ns, asked_ns - problem.earliest_ns[spot]))
+def _reaches_ns(problem: Problem) -> IntArray:
+    """Shape (m,). How far each spot may be nudged, the farther way."""
+    return np.asarray(np.maximum(problem.latest_ns - problem.asked_ns, problem.asked_ns - problem.earliest_ns))
 
 
 def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], company: _Company) -> dict[int, int]:
@@ -275,8 +277,9 @@ def _put_right(problem: Problem, spots: Sequence[int], wished_ns: Mapping[int, i
     The earliest moments that are nowhere before the wished ones less a settling keep every rule if
     any do, since the wished ones are never further off than that.
     """
-    moved = {spot for spot in spots if wished_ns[spot] != problem.asked_ns[spot]}
-    not_before = {spot: wished_ns[spot] - (_SETTLING_NS if spot in moved else 0) for spot in spots}
+    not_before = {}
+    for spot, asked_ns in zip(spots, problem.asked_ns[list(spots)].tolist(), strict=True):
+        not_before[spot] = wished_ns[spot] - (_SETTLING_NS if wished_ns[spot] != asked_ns else 0)
     kept = moments_kept(problem, spots, not_before)
     if not isinstance(kept, Moments):
         kept = moments_kept(problem, spots)

@@ -175,9 +175,10 @@ class Problem:
     def equals(self, spot: int) -> list[int]:
         """The spots of the same pluck that differ from this one by their track alone, as far as worth and spread go."""
         pluck = int(self.pluck[spot])
-        mine = np.arange(self.first_spot[pluck], self.first_spot[pluck + 1])
-        like = (self.worth[mine] == self.worth[spot]) & (self.spread[mine] == self.spread[spot])
-        return [int(one) for one in mine[like]]
+        first, last = self.first_spot[pluck : pluck + 2].tolist()
+        worth, spread = self.worth[first:last].tolist(), self.spread[first:last].tolist()
+        like = worth[spot - first], spread[spot - first]
+        return [first + place for place, one in enumerate(zip(worth, spread, strict=True)) if one == like]
 
     @property
     def pluck_count(self) -> int:

@@ -7,11 +7,14 @@ spot. One more only ever makes moments later and loads greater, so what it does 
 from bisect import bisect_left, bisect_right, insort
 from collections import defaultdict, deque
 from collections.abc import Iterator
+from dataclasses import dataclass
 
 import numpy as np
 
 from layout.arrange.problem import Beside, Drive, Problem
 from layout.mechanics.arrays import IntArray
+
+_MOST_KEPT = 1_000_000  # loads; 8 MB: those of many long windows are worked out anew each time
 
 
 class MomentsStanding:
@@ -162,8 +165,11 @@ class LoadsStanding:
         self._drive = drive
         self._moments_ns = np.unique(problem.asked_ns[spots])
         self._loads = np.zeros(len(self._moments_ns), dtype=np.int64)
-        self._standing = np.zeros(0, dtype=np.int64)  # the moments of what stands, as places, rising; some twice
+        self._standing: list[int] = []  # the moments of what stands, as places, rising; some twice
         self._at_release: dict[int, int] = {}  # by track
+        self._place_of: dict[int, int] = {}
+        self._runs_of: dict[int, list[_Run]] = {}
+        self._kept = 0
         self.entries = 0
 
     def fits(self, spot: int) -> bool:
@@ -175,29 +181,59 @@ class LoadsStanding:
         limit = self._drive.limit
         if self._loads[self._place(spot)] + self._load_at_release(spot) > limit:
             return False
-        for first, last, load in self._of(spot, self._moments_ns[self._standing]):
-            self.entries += last - first
-            if (self._loads[self._standing[first:last]] + load > limit).any():
+        for run in self._runs(spot):
+            standing = self._standing[bisect_left(self._standing, run.first) : bisect_left(self._standing, run.last)]
+            self.entries += len(standing)
+            if standing and (self._loads[standing] + run.load[np.array(standing) - run.first] > limit).any():
                 return False
         return True
 
     def put(self, spot: int) -> None:
         """Load the disc with one more spot."""
-        for first, last, load in self._of(spot, self._moments_ns):
-            self.entries += last - first
-            self._loads[first:last] += load
-        place = self._place(spot)
-        self._standing = np.insert(self._standing, self._standing.searchsorted(place), place)
+        for run in self._runs(spot):
+            self.entries += run.last - run.first
+            self._loads[run.first : run.last] += run.load
+        insort(self._standing, self._place(spot))
 
     def take(self, spot: int) -> None:
         """Take a spot that was put off again."""
-        for first, last, load in self._of(spot, self._moments_ns):
-            self.entries += last - first
-            self._loads[first:last] -= load
-        self._standing = np.delete(self._standing, self._standing.searchsorted(self._place(spot)))
+        for run in self._runs(spot):
+            self.entries += run.last - run.first
+            self._loads[run.first : run.last] -= run.load
+        del self._standing[bisect_left(self._standing, self._place(spot))]
+
+    def work_out(self, spots: IntArray) -> None:
+        """Work out what many spots load the disc with: a good deal sooner than each when it is first asked for."""
+        self._keep(self._worked_out(spots))
+
+    def _keep(self, runs_of: dict[int, list["_Run"]]) -> None:
+        self._kept += sum(run.last - run.first for runs in runs_of.values() for run in runs)
+        if self._kept <= _MOST_KEPT:
+            self._runs_of |= runs_of
+
+    def _worked_out(self, spots: IntArray) -> dict[int, list["_Run"]]:
+        """The runs of each of these spots but those whose teeth are lifted for more than a turn."""
+        drive, moments_ns, turn_ns = self._drive, self._moments_ns, self._problem.turn_ns
+        widest_ns = drive.window_table.max(axis=1, initial=0)[self._problem.track[spots]]
+        spots, widest_ns = spots[widest_ns <= turn_ns], widest_ns[widest_ns <= turn_ns]
+        released_ns = self._problem.asked_ns[spots][:, None] + np.array([0, turn_ns])
+        first = moments_ns.searchsorted(released_ns - widest_ns[:, None], side="right").ravel()
+        length = moments_ns.searchsorted(released_ns, side="right").ravel() - first
+        run = np.repeat(np.arange(len(length)), length)
+        begin = np.cumsum(length) - length
+        moment = np.arange(len(run)) + (first - begin)[run]
+        loads = drive.loads(self._problem.track[spots][run // 2], released_ns.ravel()[run] - moments_ns[moment])
+        runs_of: dict[int, list[_Run]] = {spot: [] for spot in spots.tolist()}
+        columns = (np.repeat(spots, 2).tolist(), first.tolist(), begin.tolist(), length.tolist())
+        for spot, place, at, count in zip(*columns, strict=True):
+            if count:
+                runs_of[spot].append(_Run(first=place, last=place + count, load=loads[at : at + count]))
+        return runs_of
 
     def _place(self, spot: int) -> int:
-        return int(self._moments_ns.searchsorted(self._problem.asked_ns[spot]))
+        if spot not in self._place_of:
+            self._place_of[spot] = int(self._moments_ns.searchsorted(self._problem.asked_ns[spot]))
+        return self._place_of[spot]
 
     def _load_at_release(self, spot: int) -> int:
         """What a spot loads the disc with at its own moment, for the next turn too where its window reaches so far."""
@@ -207,17 +243,24 @@ class LoadsStanding:
             self._at_release[track] = sum(self._drive.load(track, one_ns) for one_ns in before_ns)
         return self._at_release[track]
 
-    def _of(self, spot: int, moments_ns: IntArray) -> Iterator[tuple[int, int, IntArray]]:
-        """The loads of a spot at runs of these moments, rising, no moment in two runs."""
-        problem, drive = self._problem, self._drive
-        asked_ns, track = int(problem.asked_ns[spot]), int(problem.track[spot])
-        releases_ns = (asked_ns, asked_ns + problem.turn_ns)
-        widest_ns = max((lift.window_ns for lift in drive.lifts[track]), default=0)
-        if widest_ns > problem.turn_ns:
-            this_ns, next_ns = (released_ns - moments_ns for released_ns in releases_ns)
-            yield 0, len(moments_ns), drive.loads_of(track, this_ns) + drive.loads_of(track, next_ns)
-            return
-        for released_ns in releases_ns:
-            first, last = moments_ns.searchsorted((released_ns - widest_ns, released_ns), side="right").tolist()
-            if first < last:
-                yield first, last, drive.loads_of(track, released_ns - moments_ns[first:last])
+    def _runs(self, spot: int) -> list["_Run"]:
+        if spot in self._runs_of:
+            return self._runs_of[spot]
+        runs_of = self._worked_out(np.array([spot]))
+        self._keep(runs_of)
+        return runs_of[spot] if runs_of else [self._whole_turn(spot)]
+
+    def _whole_turn(self, spot: int) -> "_Run":
+        asked_ns, track = int(self._problem.asked_ns[spot]), int(self._problem.track[spot])
+        this_ns, next_ns = (one_ns - self._moments_ns for one_ns in (asked_ns, asked_ns + self._problem.turn_ns))
+        load = self._drive.loads_of(track, this_ns) + self._drive.loads_of(track, next_ns)
+        return _Run(first=0, last=len(load), load=load)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Run:
+    """The loads of a spot, shape (last − first,), at the moments from one place to before another; no moment in two."""
+
+    first: int
+    last: int
+    load: IntArray

@@ -59,6 +59,7 @@ class Standing:
         self._loads: LoadsStanding | None = None
         if problem.drive is not None:
             self._loads = LoadsStanding(problem, problem.drive, np.array([*spots, *others], dtype=np.int64))
+            self._loads.work_out(np.array([*spots, *others], dtype=np.int64))
             for spot in spots:
                 self._loads.put(spot)
         self._chosen = set(spots)

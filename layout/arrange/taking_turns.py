@@ -41,56 +41,63 @@ class _Board:
         self.at_ns = at_ns
         # A pluck moved beside another that is nudged could be pushed by it; such tracks are left as they are.
         self._beside = {track for pair in problem.besides for track in (pair.inner_index, pair.outer_index)}
-        self._loads: LoadsStanding | None = None
-        if problem.drive is not None:
-            self._loads = LoadsStanding(problem, problem.drive, np.array(list(at_ns), dtype=np.int64))
-            for spot in at_ns:
-                self._loads.put(spot)
+        # Plain lists: single numbers are read from them a good deal sooner than from arrays.
+        self._track: list[int] = problem.track.tolist()
+        self._least_ns: list[int] = problem.least_ns.tolist()
+        self._pluck: list[int] = problem.pluck.tolist()
         self._on_track: dict[int, list[tuple[int, ...]]] = defaultdict(list)
         for spot, moment_ns in at_ns.items():
-            insort(self._on_track[int(problem.track[spot])], (moment_ns, spot))
+            insort(self._on_track[self._track[spot]], (moment_ns, spot))
+        self._equals = {spot: self._equals_of(spot) for spot in at_ns}
+        self._loads: LoadsStanding | None = None
+        if problem.drive is not None:
+            chosen = np.array(list(at_ns), dtype=np.int64)
+            self._loads = LoadsStanding(problem, problem.drive, chosen)
+            others = [equal for equals in self._equals.values() for equal in equals]
+            self._loads.work_out(np.concatenate([chosen, np.array(others, dtype=np.int64)]))
+            for spot in at_ns:
+                self._loads.put(spot)
 
     def move_to_most_rested(self, spot: int) -> None:
         """Put a spot's pluck on the equal spot whose track was plucked longest ago, if that is another."""
         at_ns = self.at_ns[spot]
-        equals = self._equals(spot)
+        equals = self._equals[spot]
         if not equals:
             return
-        row = self._on_track[int(self._problem.track[spot])]
+        row = self._on_track[self._track[spot]]
         row.remove((at_ns, spot))
         del self.at_ns[spot]
         best = min([spot, *equals], key=lambda one: self._rank(one, at_ns, spot))
         if self._loads is not None and best != spot:
             self._loads.take(spot)
             self._loads.put(best)
-        insort(self._on_track[int(self._problem.track[best])], (at_ns, best))
+        insort(self._on_track[self._track[best]], (at_ns, best))
         self.at_ns[best] = at_ns
 
-    def _equals(self, spot: int) -> list[int]:
+    def _equals_of(self, spot: int) -> list[int]:
         equals = self._problem.equals(spot)
-        return [one for one in equals if one != spot and int(self._problem.track[one]) not in self._beside]
+        return [one for one in equals if one != spot and self._track[one] not in self._beside]
 
     def _rank(self, spot: int, at_ns: int, now: int) -> tuple[bool, float, int, int]:
         """Spots without room last, then by when the track last sounded; of unused tracks the fastest."""
-        track = int(self._problem.track[spot])
+        track = self._track[spot]
         row = self._on_track[track]
         place = bisect_left(row, (at_ns, spot))
         last_ns = row[place - 1][0] if place else -float("inf")
-        return not (spot == now or self._has_room(spot, at_ns, now)), last_ns, int(self._problem.least_ns[spot]), -track
+        return not (spot == now or self._has_room(spot, at_ns, now)), last_ns, self._least_ns[spot], -track
 
     def _has_room(self, spot: int, at_ns: int, now: int) -> bool:
-        problem = self._problem
-        row = self._on_track[int(problem.track[spot])]
-        if problem.least_ns[spot] > problem.turn_ns:
+        turn_ns, least_ns, pluck = self._problem.turn_ns, self._least_ns, self._pluck
+        row = self._on_track[self._track[spot]]
+        if least_ns[spot] > turn_ns:
             return False  # its own next turn comes too soon
         if row:
             place = bisect_left(row, (at_ns, spot))
             (before_ns, before), (after_ns, after) = row[place - 1], row[place % len(row)]
-            before_ns -= problem.turn_ns if place == 0 else 0
-            after_ns += problem.turn_ns if place == len(row) else 0
-            if at_ns - before_ns < problem.least_ns[before] or after_ns - at_ns < problem.least_ns[spot]:
+            before_ns -= turn_ns if place == 0 else 0
+            after_ns += turn_ns if place == len(row) else 0
+            if at_ns - before_ns < least_ns[before] or after_ns - at_ns < least_ns[spot]:
                 return False
-            pluck = self._problem.pluck
             if (place and pluck[before] > pluck[spot]) or (place < len(row) and pluck[spot] > pluck[after]):
                 return False
         return self._is_carried(spot, now)
@@ -101,7 +108,7 @@ class _Board:
         if loads is None or problem.drive is None:
             return True
         lifts = problem.drive.lifts
-        if lifts[int(problem.track[spot])] == lifts[int(problem.track[now])]:
+        if lifts[self._track[spot]] == lifts[self._track[now]]:
             return True
         loads.take(now)
         fits = loads.fits(spot)
