@@ -34,7 +34,7 @@ class Finishing:
     def arrangement(self, asked: Asked, problem: Problem, solved: Solved) -> Arrangement:
         """The arrangement of one disc."""
         wanted, semitones = asked.wanted, self.found.way.semitones
-        with_moments = solved.played
+        with_moments = solved.playing.played
         spots = np.array(with_moments.spots, dtype=np.int64)
         pluck, track = problem.pluck[spots], problem.track[spots]
         asked_s = wanted.asked_s[pluck]

@@ -7,10 +7,12 @@ cannot. Nothing is dropped here.
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
 from layout.arrange.loads import overloads
+from layout.arrange.moments_kept import pushes_of
 from layout.arrange.nudging import nudged, nudged_later
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import narrowed
@@ -32,6 +34,41 @@ class Played:
     spots: tuple[int, ...]
     at_ns: Mapping[int, int]
     too_heavy: tuple[tuple[int, ...], ...]
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)  # no slots: what is worked out is kept
+class Playing:
+    """A choice that may be played: of most choices of a search only the weight is asked for.
+
+    Attributes:
+        problem: The rules.
+        spots: A choice that keeps every rule, by pluck.
+        in_haste: As for `played`.
+    """
+
+    problem: Problem
+    spots: tuple[int, ...]
+    in_haste: bool
+
+    @cached_property
+    def played(self) -> Played:
+        """The choice with its moments."""
+        return played(self.problem, self.spots, in_haste=self.in_haste)
+
+    @cached_property
+    def too_heavy(self) -> tuple[tuple[int, ...], ...]:
+        """As of `played`. Where nothing need be nudged the choice itself keeps the limit, and is not played for it."""
+        if self._stands_as_asked:
+            return ()
+        return self.played.too_heavy
+
+    @property
+    def _stands_as_asked(self) -> bool:
+        asked_ns = self.problem.asked_ns.tolist()
+        return not self.problem.spread[list(self.spots)].any() and all(
+            asked_ns[push.later] - asked_ns[push.earlier] >= push.least_ns
+            for push in pushes_of(self.problem, self.spots)
+        )
 
 
 def played(problem: Problem, spots: Sequence[int], *, in_haste: bool = False) -> Played:

@@ -22,7 +22,7 @@ from layout.arrange.coupled import MOST_ENTRIES_FOR_RULINGS, MOST_LIFTED, best_c
 from layout.arrange.fitting import fitted
 from layout.arrange.loads import lifted_count, piled_up
 from layout.arrange.parts import parts_of
-from layout.arrange.playing import Played, played
+from layout.arrange.playing import Playing
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
@@ -41,13 +41,13 @@ class Solved:
         spots: The spots chosen, by pluck.
         worth: What they are worth.
         bound: No choice is worth more; equal to `worth` where the choice is proved the best.
-        played: The same plucks with their moments.
+        playing: The same plucks with their moments, worked out when they are asked for.
     """
 
     spots: tuple[int, ...]
     worth: int
     bound: int
-    played: Played
+    playing: Playing
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -98,7 +98,7 @@ class Solving:
         self._silent = np.flatnonzero(problem.must_sound & (np.diff(problem.first_spot) == 0))
         self._groups: list[_Group] = []
         self._alone: dict[int, int] = {}
-        self._last_played: tuple[tuple[int, ...], tuple[tuple[int, ...], ...], Played] | None = None
+        self._last_played: Playing | None = None
 
     @property
     def taken_apart(self) -> bool:
@@ -173,20 +173,21 @@ class Solving:
 
     def _solved(self, spots: tuple[int, ...], budget: Budget) -> Solved:
         worth = worth_of(self.problem, spots)
-        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth), played=self._play(spots, budget))
+        return Solved(spots=spots, worth=worth, bound=max(self.bound, worth), playing=self._play(spots, budget))
 
     def _broken(self, budget: Budget) -> list[tuple[int, ...]]:
         chosen = self._chosen()
         budget.spend_looks(LOOKS_TO_JUDGE * len(chosen))
         return broken_by(self.problem, chosen) or self._piled(chosen, budget)
 
-    def _play(self, spots: tuple[int, ...], budget: Budget) -> Played:
+    def _play(self, spots: tuple[int, ...], budget: Budget) -> Playing:
         """A choice with its moments; kept, since what nothing is wrong with is asked for once more."""
-        if self._last_played is None or self._last_played[:2] != (spots, self.problem.piled):
-            budget.spend_looks(LOOKS_TO_PLAY * len(spots))
+        last = self._last_played
+        if last is None or (last.spots, last.problem.piled) != (spots, self.problem.piled):
+            budget.spend_looks(LOOKS_TO_PLAY * len(spots))  # played or not: where a search stops must not hang on that
             in_haste = len(spots) > MOST_AT_LEISURE and budget.stopped == "time"
-            self._last_played = spots, self.problem.piled, played(self.problem, spots, in_haste=in_haste)
-        return self._last_played[2]
+            last = self._last_played = Playing(problem=self.problem, spots=spots, in_haste=in_haste)
+        return last
 
     def _piled(self, chosen: tuple[int, ...], budget: Budget) -> list[tuple[int, ...]]:
         """The spots of a choice that its nudges bring too near for the drive; forbidden together from now on.

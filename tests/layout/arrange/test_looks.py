@@ -122,5 +122,5 @@ def test_a_large_choice_is_played_in_haste_once_time_is_over(monkeypatch: pytest
     assert isinstance(unhurried_ns, Solved)
     assert isinstance(hasty_ns, Solved)
     # With care the lighter gives way, and to the earlier side; in haste the later one.
-    assert unhurried_ns.played.at_ns[0] == pytest.approx(990_000_000, abs=5)
-    assert hasty_ns.played.at_ns == {0: 1_000_000_000, 1: 1_100_000_000}
+    assert unhurried_ns.playing.played.at_ns[0] == pytest.approx(990_000_000, abs=5)
+    assert hasty_ns.playing.played.at_ns == {0: 1_000_000_000, 1: 1_100_000_000}
