@@ -9,11 +9,12 @@ from layout.arrange import solving
 from layout.arrange.budget import Budget
 from layout.arrange.coupled import best_coupled
 from layout.arrange.loads import overloads
-from layout.arrange.playing import played
+from layout.arrange.playing import Playing, played
 from layout.arrange.problem import Problem
 from layout.arrange.searching import Found, Way, search
 from layout.arrange.solving import Solved, Solving
 from tests.layout.arrange.by_hand import MS, Asked, beside, drive_of, problem_with
+from tests.layout.arrange.random_problems import problem_of
 
 # One tooth is all the drive carries, over 50 ms. Track 1 needs 100 ms, and its two plucks are 88 ms apart.
 DRIVE = drive_of([1000, 1000], window_ms=50, limit=1000)
@@ -136,3 +137,20 @@ def _begun_only_without_a_limit(
     problem: Problem, plucks: np.ndarray, budget: Budget, *, most_entries: int | None = 0
 ) -> object:
     return best_coupled(problem, plucks, budget, most_entries=most_entries)
+
+
+def test_a_choice_that_need_not_be_nudged_is_told_too_heavy_nowhere_and_so_it_plays() -> None:
+    stood, moved = 0, 0
+    for seed in range(600):
+        solving_it = Solving(problem_of(seed))
+        found = solving_it.together(Budget())
+        problem = solving_it.problem  # its chords may have been spread
+        if problem.drive is None or not isinstance(found, Solved):
+            continue
+        playing = Playing(problem=problem, spots=found.spots, in_haste=False)
+
+        too_heavy = playing.too_heavy
+
+        stood, moved = stood + ("played" not in vars(playing)), moved + ("played" in vars(playing))
+        assert too_heavy == played(problem, found.spots).too_heavy
+    assert min(stood, moved) >= 50
