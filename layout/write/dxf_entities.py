@@ -18,6 +18,7 @@ from ezdxf.lldxf.tagwriter import AbstractTagWriter
 from ezdxf.sections.entities import EntitySection
 
 from layout.mechanics.arrays import FloatArray
+from layout.write.many_numbers import as_repr
 from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
 APP_ID = "DISCWRIGHT"  # under which lettering carries its words as extended data
@@ -109,24 +110,24 @@ class WrittenEntities(EntitySection):
     ) -> None:
         """See Entities."""
         curves = ["" if bulge == 0 else f" 42\n{bulge!r}\n" for bulge in bulges.tolist()]
-        vertices = "".join(f" 10\n%r\n 20\n%r\n{curve}" for curve in curves)
+        vertices = "".join(f" 10\n%s\n 20\n%s\n{curve}" for curve in curves)
         shape = f" 90\n{len(curves)}\n 70\n{int(closed)}\n{vertices}"
         said = f"1001\n{APP_ID}\n{_STRING}\n{dxf_text(words, MOST_DXF_STRING)}\n" if words else ""
         self._add("LWPOLYLINE", "AcDbPolyline", layer, shape + said.replace("%", "%%"), points_mm)
 
     def add_circles(self, layer: str, centres_mm: FloatArray, radius_mm: Sequence[float]) -> None:
         """See Entities."""
-        shape = " 10\n%r\n 20\n%r\n 30\n0.0\n 40\n%r\n"
+        shape = " 10\n%s\n 20\n%s\n 30\n0.0\n 40\n%s\n"
         self._add("CIRCLE", "AcDbCircle", layer, shape, np.column_stack([centres_mm, radius_mm]))
 
     def add_arc(self, layer: str, centre_mm: FloatArray, radius_mm: float, ends_deg: tuple[float, float]) -> None:
         """See Entities."""
-        shape = " 10\n%r\n 20\n%r\n 30\n0.0\n 40\n%r\n100\nAcDbArc\n 50\n%r\n 51\n%r\n"
+        shape = " 10\n%s\n 20\n%s\n 30\n0.0\n 40\n%s\n100\nAcDbArc\n 50\n%s\n 51\n%s\n"
         self._add("ARC", "AcDbCircle", layer, shape, np.array([[*centre_mm, radius_mm, *ends_deg]]))
 
     def add_points(self, layer: str, points_mm: FloatArray) -> None:
         """See Entities."""
-        self._add("POINT", "AcDbPoint", layer, " 10\n%r\n 20\n%r\n 30\n0.0\n", points_mm)
+        self._add("POINT", "AcDbPoint", layer, " 10\n%s\n 20\n%s\n 30\n0.0\n", points_mm)
 
     def export_dxf(self, tagwriter: AbstractTagWriter) -> None:
         """Write the section: ezdxf asks for it in its turn."""
@@ -136,7 +137,7 @@ class WrittenEntities(EntitySection):
         """Add one entity for each row of numbers, in the order in which they stand in the shape."""
         on_layer = layer.replace("%", "%%")
         form = f"  0\n{kind}\n  5\n%X\n330\n{self._owner}\n100\nAcDbEntity\n  8\n{on_layer}\n100\n{subclass}\n{shape}"
-        rows = numbers.reshape(len(numbers), math.prod(numbers.shape[1:])).tolist()
+        rows = as_repr(numbers.reshape(len(numbers), math.prod(numbers.shape[1:])))
         first = int(str(self._handles), _HEXADECIMAL)
         self._text += [form % (first + place, *row) for place, row in enumerate(rows)]
         self._handles.reset(f"{first + len(rows):X}")

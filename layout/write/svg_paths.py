@@ -7,6 +7,7 @@ import numpy as np
 
 from layout.cut.plan import Circles, Entity, Lettering, Outlines, Points
 from layout.mechanics.arrays import FloatArray
+from layout.write.many_numbers import lines_as_data
 from layout.write.numbers import DECIMALS_RADIUS, number, rounded
 
 
@@ -68,7 +69,7 @@ def circles(entities: list[Entity]) -> Iterator[tuple[str, str, str]]:
 
 def lines_data(ends_mm: FloatArray) -> str:
     """SVG path data of straight lines given as shape (n, 2, 2), in drawing coordinates."""
-    return "".join(_open_line(line) for line in rounded(ends_mm * (1, -1)).tolist())
+    return lines_as_data(rounded(ends_mm * (1, -1)))
 
 
 def _open_line(points: list[list[float]]) -> str:
@@ -76,6 +77,11 @@ def _open_line(points: list[list[float]]) -> str:
 
 
 def _outlines(outlines: Outlines) -> Iterator[str]:
+    """Path data of each outline, or of all together where all their pieces are straight."""
+    if not outlines.bulges.any():
+        together = lines_as_data(rounded(outlines.points_mm * (1, -1)))
+        yield together.replace("M", "ZM")[1:] + "Z" if together and outlines.closed else together
+        return
     bulges = outlines.bulges.tolist()
     pieces = len(bulges) if outlines.closed else len(bulges) - 1
     turned = rounded(outlines.points_mm * (1, -1)).tolist()
