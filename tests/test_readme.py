@@ -249,3 +249,15 @@ def test_every_field_a_document_may_leave_out_is_told() -> None:
     untold = {one for one in optional if re.search(rf"\b{one.split()[1]}\b", told) is None}
 
     assert untold == {"fold slit_width_mm", "fold relief_width_mm"}  # sizes of the fold itself
+
+
+def test_every_test_that_the_section_on_security_names_is_there() -> None:
+    developers = (TOP / "DEVELOPERS.md").read_text()
+    [section] = re.findall(r"## Security\n(.*?)\n## ", developers, flags=re.DOTALL)
+
+    named = re.findall(r"`([\w/]+\.py)`: ((?:`test_\w+`(?:, )?)+)", section)
+
+    assert len(named) >= 15
+    for path, tests in named:
+        text = (TOP / "tests" / path).read_text()
+        assert [test for test in re.findall(r"test_\w+", tests) if f"def {test}(" not in text] == []
