@@ -14,7 +14,7 @@ import shapely
 from numpy.typing import NDArray
 
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
+from layout.mechanics.arrays import FloatArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
@@ -97,15 +97,20 @@ def webs_mm(turning: Turning, pattern: Pattern, first: FloatArray, second: Float
     Args:
         turning: For the direction of travel.
         pattern: The openings' pattern.
-        first: Shape (n, 2). Radius and working-edge angle of one opening of each pair.
+        first: Shape (n, 2). Radius and working-edge angle of one opening of each pair; (1, 2) where all have the same.
         second: Shape (n, 2). The same of the other.
     """
-    one, two = (
-        core_geometries(
-            on_disc_mm(pattern.core_points_mm, each[:, 0], each[:, 1], turning.direction, pattern.strike_u_mm)
-        )
-        for each in (first, second)
-    )
+    one, two = (_cores(turning, pattern, each[:, 0], each[:, 1]) for each in (first, second))
+    return _between_mm(pattern, one, two)
+
+
+def _cores(turning: Turning, pattern: Pattern, radius_mm: FloatArray, angle_rad: FloatArray) -> NDArray[np.object_]:
+    """Shape (n,). The openings' cores at radii and working-edge angles."""
+    placed = radius_mm, angle_rad, turning.direction
+    return core_geometries(on_disc_mm(pattern.core_points_mm, *placed, pattern.strike_u_mm))
+
+
+def _between_mm(pattern: Pattern, one: NDArray[np.object_], two: NDArray[np.object_]) -> FloatArray:
     return np.asarray(shapely.distance(one, two)) - 2 * pattern.core_round_mm
 
 
@@ -113,10 +118,10 @@ def _web_angles_rad(turning: Turning, pattern: Pattern, min_web_mm: float) -> Fl
     radius_mm = turning.radius_mm
     low = np.zeros(len(radius_mm))
     high = np.full(len(radius_mm), math.pi)
-    here = np.column_stack([radius_mm, low])
+    here = _cores(turning, pattern, radius_mm, low)
     for _ in range(_HALVINGS):
         middle = (low + high) / 2
-        enough = webs_mm(turning, pattern, here, np.column_stack([radius_mm, middle])) >= min_web_mm
+        enough = _between_mm(pattern, here, _cores(turning, pattern, radius_mm, middle)) >= min_web_mm
         high, low = np.where(enough, middle, high), np.where(enough, low, middle)
     return high
 
@@ -128,7 +133,8 @@ def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tu
     for inner, outer in pairs:
         reach_rad = min(2 * along_mm / float(turning.radius_mm[inner]), math.pi)
         scan = np.linspace(-reach_rad, reach_rad, _SCAN_STEPS)
-        webs = _pair_webs_mm(turning, pattern, np.full((len(scan), 2), (inner, outer)), scan)
+        here = np.array([[turning.radius_mm[inner], 0.0]])
+        webs = webs_mm(turning, pattern, here, np.insert(scan[:, None], 0, turning.radius_mm[outer], axis=1))
         bad = np.flatnonzero(webs < min_web_mm)
         # Corners may pass too near while the flat sides between them do not: each stretch counts for itself.
         for run in np.split(bad, np.flatnonzero(np.diff(bad) > 1) + 1) if len(bad) else []:
@@ -161,22 +167,17 @@ def _reach_mm(pattern: Pattern, axis: int) -> float:
     return float(np.ptp(pattern.core_points_mm[:, axis])) + 2 * pattern.core_round_mm
 
 
-def _pair_webs_mm(turning: Turning, pattern: Pattern, pairs: IntArray, apart_rad: FloatArray) -> FloatArray:
-    first = np.column_stack([turning.radius_mm[pairs[:, 0]], np.zeros(len(apart_rad))])
-    second = np.column_stack([turning.radius_mm[pairs[:, 1]], apart_rad])
-    return webs_mm(turning, pattern, first, second)
-
-
 def _edges_rad(
     turning: Turning, pattern: Pattern, min_web_mm: float, ends: list[tuple[int, int, float, float]]
 ) -> list[float]:
     """Where the web reaches its least, between a good and a bad angle of each end; the good side of it."""
     if not ends:
         return []
-    pairs = np.array([end[:2] for end in ends])
+    inner_mm, outer_mm = turning.radius_mm[np.array([end[:2] for end in ends]).T]
+    here = _cores(turning, pattern, inner_mm, np.zeros(len(ends)))
     good_rad, bad_rad = np.array([end[2] for end in ends]), np.array([end[3] for end in ends])
     for _ in range(_HALVINGS):
         middle = (good_rad + bad_rad) / 2
-        enough = _pair_webs_mm(turning, pattern, pairs, middle) >= min_web_mm
+        enough = _between_mm(pattern, here, _cores(turning, pattern, outer_mm, middle)) >= min_web_mm
         good_rad, bad_rad = np.where(enough, middle, good_rad), np.where(enough, bad_rad, middle)
     return [float(angle) for angle in good_rad]
