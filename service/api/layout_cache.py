@@ -19,6 +19,7 @@ import time
 import zipfile
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 from importlib.resources import files
 from importlib.resources.abc import Traversable
 from pathlib import Path
@@ -32,6 +33,7 @@ log = logging.getLogger("discwright")
 SUFFIX = ".zip"
 PART_SUFFIX = ".part"
 OWNER_ONLY = 0o700
+AT_HAND = 16  # layouts that a process keeps unpacked: about half a megabyte each; they are asked for again and again
 DIGITS = 8  # of the program's digest in a name
 
 
@@ -67,7 +69,7 @@ class KeptLayout:
     @property
     def stopped_by_time(self) -> bool:
         """Whether time stopped the search for it, so that another search may come to another disc."""
-        return bool(json.loads(self.files["report.json"])["worth"]["stopped"] == "time")
+        return _was_stopped_by_time(self.files["report.json"])
 
     @property
     def part(self) -> str:
@@ -234,6 +236,12 @@ def _packed(layout: KeptLayout) -> bytes:
     return buffer.getvalue()
 
 
+@lru_cache(maxsize=AT_HAND)
+def _was_stopped_by_time(report: bytes) -> bool:
+    return bool(json.loads(report)["worth"]["stopped"] == "time")
+
+
+@lru_cache(maxsize=AT_HAND)  # by the bytes themselves: what another worker puts in the place of a file is read anew
 def _unpacked(packed: bytes) -> KeptLayout:
     with zipfile.ZipFile(io.BytesIO(packed)) as archive:
         members = {name: archive.read(name) for name in archive.namelist()}
