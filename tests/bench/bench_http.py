@@ -1,4 +1,4 @@
-"""What HTTP costs: a layout by POST against the same work in a process, and a repeat with If-None-Match against nothing.
+"""HTTP: a layout by POST against the same work in a process, and a repeat with If-None-Match against an empty route.
 
 One web worker of the service, and one gunicorn worker of the same class with a Flask app of one empty route, on
 loopback; a client that asks for one thing after the other, a connection for each, as the service has it. In turn.
@@ -51,7 +51,11 @@ def asked(port: int, head: str, body: bytes = b"") -> tuple[int, dict[str, str],
             parts.append(part)
     start, _, content = b"".join(parts).partition(b"\r\n\r\n")
     first, *fields = start.decode("latin-1").split("\r\n")
-    return int(first.split()[1]), {name.lower(): value for name, value in (one.split(": ", 1) for one in fields)}, content
+    return (
+        int(first.split()[1]),
+        {name.lower(): value for name, value in (one.split(": ", 1) for one in fields)},
+        content,
+    )
 
 
 @contextmanager
@@ -95,7 +99,9 @@ def form(title: str) -> tuple[str, bytes]:
 
 def posted(port: int, title: str) -> dict[str, str]:
     kind, body = form(title)
-    status, fields, content = asked(port, f"POST /v1/layouts?movement={MOVEMENT} HTTP/1.1\r\nContent-Type: {kind}\r\nAccept: application/json", body)
+    status, _, content = asked(
+        port, f"POST /v1/layouts?movement={MOVEMENT} HTTP/1.1\r\nContent-Type: {kind}\r\nAccept: application/json", body
+    )
     if status not in (200, 201):
         raise SystemExit(f"{status}: {content[:300]!r}")
     links: dict[str, str] = json.loads(content)["links"]
@@ -122,7 +128,12 @@ def post_rows(port: int) -> list[list[str]]:
         over.append(took_ms(lambda number=number: posted(port, f"over {number} {os.getpid()}")))  # type: ignore[misc]
         within.append(took_ms(lambda number=number: in_process(f"within {number}")))  # type: ignore[misc]
     over_ms, within_ms = statistics.median(over[2:]), statistics.median(within[2:])
-    told(f"POST /v1/layouts of the demo tune on {MOVEMENT}: times of the same in a process", over_ms / within_ms, POST_GOAL, most=True)
+    told(
+        f"POST /v1/layouts of the demo tune on {MOVEMENT}: times of the same in a process",
+        over_ms / within_ms,
+        POST_GOAL,
+        most=True,
+    )
     return [["POST /v1/layouts", f"{over_ms:.1f} ms"], ["the same in a process", f"{within_ms:.1f} ms"]]
 
 
@@ -138,11 +149,19 @@ def repeat_rows(port: int, empty_port: int) -> list[list[str]]:
             raise SystemExit(f"{path}: {status} instead of 304")
     took: dict[str, list[float]] = {name: [] for name in (*heads, "an empty route")}
     for _ in range(ROUNDS):
-        for name, (to, head) in {**{name: (port, head) for name, head in heads.items()}, "an empty route": (empty_port, "GET / HTTP/1.1")}.items():
+        for name, (to, head) in {
+            **{name: (port, head) for name, head in heads.items()},
+            "an empty route": (empty_port, "GET / HTTP/1.1"),
+        }.items():
             took[name].append(took_ms(lambda to=to, head=head: [asked(to, head) for _ in range(REPEATS)]))  # type: ignore[misc]
     per_s = {name: 1000 * REPEATS / statistics.median(times) for name, times in took.items()}
     for name in heads:
-        told(f"GET of {name} answered 304: part of the requests a second of an empty route", per_s[name] / per_s["an empty route"], REPEAT_GOAL, most=False)
+        told(
+            f"GET of {name} answered 304: part of the requests a second of an empty route",
+            per_s[name] / per_s["an empty route"],
+            REPEAT_GOAL,
+            most=False,
+        )
     return [[name, f"{rate:.0f} a second"] for name, rate in per_s.items()]
 
 
@@ -158,7 +177,17 @@ def main() -> None:
             "DISCWRIGHT_WRITE_RATE": "1000000/60",
         }
         web = [sys.executable, "-m", "service.commands.main", "web", "--port", str(port), "--workers", "1"]
-        other = [sys.executable, "-m", "gunicorn", "--bind", f"127.0.0.1:{empty_port}", "--workers", "1", "--threads", "8"]
+        other = [
+            sys.executable,
+            "-m",
+            "gunicorn",
+            "--bind",
+            f"127.0.0.1:{empty_port}",
+            "--workers",
+            "1",
+            "--threads",
+            "8",
+        ]
         other += ["--keep-alive", "0", "--log-level", "error", "tests.bench.bench_http:empty"]
         with running(web, environment, port), running(other, {}, empty_port):
             rows = post_rows(port) + repeat_rows(port, empty_port)
