@@ -66,6 +66,11 @@ class Drive:
         """The longest window of all teeth; 0 for none."""
         return max((lift.window_ns for lifts in self.lifts for lift in lifts), default=0)
 
+    @cached_property
+    def widest_of_track_ns(self) -> IntArray:
+        """Shape (tracks,). The longest window of each track's teeth; 0 for a track that lifts none."""
+        return np.array([max((lift.window_ns for lift in lifts), default=0) for lifts in self.lifts], dtype=np.int64)
+
     def load(self, track: int, before_ns: int) -> int:
         """The load of a pluck on a track this long before its release, rounded up; 0 outside the window."""
         return int(self.loads(np.array([track]), np.array([before_ns]))[0])

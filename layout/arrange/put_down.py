@@ -214,7 +214,7 @@ class LoadsStanding:
     def _worked_out(self, spots: IntArray) -> dict[int, list["_Run"]]:
         """The runs of each of these spots but those whose teeth are lifted for more than a turn."""
         drive, moments_ns, turn_ns = self._drive, self._moments_ns, self._problem.turn_ns
-        widest_ns = drive.window_table.max(axis=1, initial=0)[self._problem.track[spots]]
+        widest_ns = drive.widest_of_track_ns[self._problem.track[spots]]
         spots, widest_ns = spots[widest_ns <= turn_ns], widest_ns[widest_ns <= turn_ns]
         released_ns = self._problem.asked_ns[spots][:, None] + np.array([0, turn_ns])
         first = moments_ns.searchsorted(released_ns - widest_ns[:, None], side="right").ravel()

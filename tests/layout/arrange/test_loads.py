@@ -8,10 +8,12 @@ from layout.arrange.loading import greatest_load
 from layout.arrange.loads import heavy_moments, overloads
 from layout.arrange.posing import rules_of
 from layout.arrange.problem import Drive, Lift
+from layout.arrange.put_down import LoadsStanding
 from layout.documents import Settings
 from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.mechanics.turning import turning_of
 from tests.layout.arrange.by_hand import MS, Asked, drive_of, problem_with
+from tests.layout.arrange.random_problems import problem_of
 from tests.layout.arrange.small_comb import SMALL_COMB, comb_with, spacing_for
 
 ALL = np.arange(2)
@@ -152,3 +154,42 @@ def test_no_limit_is_kept_where_the_settings_say_so() -> None:
     spacing, comb, turning = spacing_for(movement), comb_of(movement), turning_of(movement)
 
     assert rules_of(movement, comb, turning, spacing, Settings(load_limit="ignore")).drive is None
+
+
+def test_spots_load_the_disc_alike_worked_out_together_and_each_when_asked_for() -> None:
+    judged = []
+    for seed in range(300):
+        problem = problem_of(seed)
+        if problem.drive is None:
+            continue
+        spots = np.arange(problem.spot_count)
+        together, one_by_one, fresh = (LoadsStanding(problem, problem.drive, spots) for _ in range(3))
+        together.work_out(spots)
+        for standing in (together, one_by_one):
+            seen = []
+            for spot in spots.tolist():
+                seen.append((standing.fits(spot), standing.entries))
+                standing.put(spot)
+            judged.append(seen)
+            for spot in spots.tolist():
+                standing.take(spot)
+            assert [standing.fits(spot) for spot in spots.tolist()] == [fresh.fits(spot) for spot in spots.tolist()]
+
+    assert judged[::2] == judged[1::2]
+    assert {fits for seen in judged for fits, _ in seen} == {True, False}
+
+
+def test_spots_that_stand_leave_room_for_one_more_where_all_together_are_no_overload() -> None:
+    for seed in range(300):
+        problem = problem_of(seed)
+        if problem.drive is None or not problem.spot_count:
+            continue
+        *others, last = range(problem.spot_count)
+        standing = LoadsStanding(problem, problem.drive, np.arange(problem.spot_count))
+        for spot in others:
+            standing.put(spot)
+
+        fits = standing.fits(last)
+
+        if not overloads(problem, np.array(others, dtype=np.int64)):
+            assert fits == (not overloads(problem, np.arange(problem.spot_count)))
