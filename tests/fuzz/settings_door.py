@@ -40,7 +40,7 @@ _ASKED: tuple[dict[str, Any], ...] = (
     {
         "passage": {"from_bar": 1, "to_bar": 2},
         "speed": {"mode": "factor", "factor": 1.5},
-        "transpose": {"mode": "fixed", "semitones": -1},
+        "transpose": {"mode": "fixed", "semitones": 0},
         "octave_moves": "outer",
         "rulings": [
             {"note": 0, "do": "leave-out"},

@@ -1,0 +1,102 @@
+"""Every door on what fuzzing found once, and on a few changed inputs; `sh tests/run fuzz` tries more."""
+
+import random
+import time
+from pathlib import Path
+
+import pytest
+
+from layout.errors import DocumentError, LayoutError, MidiReadError
+from tests.fuzz.door import MOST_CPU_S, Door, fault_of
+from tests.fuzz.doors import DOORS
+from tests.fuzz.mutated_tunes import mutated_tune
+from tests.thorough import THOROUGH
+
+FINDINGS = sorted(path for path in (Path(__file__).parent / "findings").glob("*/*"))
+TRIED = {"tune": 1500, "drawing": 40, "movement": 40, "cutter": 40, "settings": 60}  # a second or two each
+MORE = 20 if THOROUGH else 1
+
+
+@pytest.mark.parametrize("path", FINDINGS, ids=lambda path: f"{path.parent.name}-{path.name}")
+def test_what_fuzzing_found_is_answered(path: Path) -> None:
+    door = DOORS[path.parent.name]
+
+    fault = fault_of(door, path.read_bytes())
+
+    assert fault is None, fault
+
+
+@pytest.mark.parametrize("door", DOORS.values(), ids=DOORS)
+def test_the_seeds_of_a_door_are_good_inputs(door: Door) -> None:
+    for seed in door.seeds:
+        door.answer(seed)  # raises nothing
+
+
+@pytest.mark.parametrize("door", DOORS.values(), ids=DOORS)
+def test_changed_inputs_are_answered(door: Door) -> None:
+    answered = 0
+    for number in range(TRIED[door.name] * MORE):
+        dice = random.Random(number)
+        data = door.mutate(dice.choice(door.seeds), dice)
+
+        fault = fault_of(door, data)
+
+        assert fault is None, f"input {number} of door {door.name}: {fault}"
+        answered += not _is_refused(door, data) if number < 20 else 0
+    assert answered, "every input was refused: the changes reach nothing behind the reader"
+
+
+def _is_refused(door: Door, data: bytes) -> bool:
+    try:
+        door.answer(data)
+    except LayoutError:
+        return True
+    return False
+
+
+def _raising(error: Exception) -> Door:
+    def answer(_: bytes) -> object:
+        raise error
+
+    return Door(name="x", suffix="", seeds=(), answer=answer, mutate=mutated_tune, errors=(DocumentError,))
+
+
+def test_an_error_that_is_none_of_the_doors_is_a_fault() -> None:
+    wrong_door = MidiReadError(byte_offset=0, found="a", expected="b", remedy="c")
+
+    assert [getattr(fault_of(_raising(error), b""), "kind", None) for error in (ValueError(), wrong_door)] == [
+        "ValueError-outside",
+        "MidiReadError-outside",
+    ]
+
+
+def test_an_error_that_says_nothing_is_a_fault_and_one_that_speaks_is_none() -> None:
+    silent = DocumentError(document="", problems=())
+    silent.args = ("",)
+
+    assert getattr(fault_of(_raising(silent), b""), "kind", None) == "error-without-words"
+    assert fault_of(_raising(DocumentError(document="cutter", problems=())), b"") is None
+
+
+def test_an_answer_that_takes_too_long_or_too_much_is_a_fault() -> None:
+    def long(_: bytes) -> None:
+        begun_s = time.process_time()
+        while time.process_time() < begun_s + MOST_CPU_S + 0.05:
+            pass
+
+    def large(_: bytes) -> None:
+        bytearray(b"x") * 400_000_000
+
+    doors = [
+        Door(name="x", suffix="", seeds=(), answer=answer, mutate=mutated_tune, errors=()) for answer in (long, large)
+    ]
+
+    assert [getattr(fault_of(door, b""), "kind", None) for door in doors] == ["slow", "large"]
+
+
+@pytest.mark.parametrize("door", DOORS.values(), ids=DOORS)
+def test_a_change_is_decided_by_its_die_alone(door: Door) -> None:
+    once, again = ([door.mutate(seed, random.Random(7)) for seed in door.seeds] for _ in range(2))
+
+    assert once == again
+    assert list(door.seeds) != once
