@@ -64,7 +64,7 @@ def real_client(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Client]:
     client.close()
 
 
-@pytest.mark.parametrize("name", (*WALKED, "ten megabytes of FF"))
+@pytest.mark.parametrize("name", [*WALKED, "ten megabytes of FF"])
 def test_a_slow_tune_sent_to_the_service_is_laid_out_or_refused_in_words(real_client: Client, name: str) -> None:
     answer = real_client.post_tune(SLOW_TUNES[name]())
 
