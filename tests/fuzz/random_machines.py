@@ -41,7 +41,7 @@ def movements(draw: st.DrawFn) -> Movement:
         "after_music_deg": draw(numbers(8, 30, 1)),
         "gantry_offset_mm": draw(numbers(-3, 3, 0.5)),
         "disc": {
-            "outer_diameter_mm": round(2 * (last_mm + draw(numbers(2.5, 12, 0.5))), 6),
+            "outer_diameter_mm": round(2 * (last_mm + draw(numbers(1, 8, 0.5))), 6),
             "thickness_mm": 0.5,
             "material": "cold-rolled steel",
             "centre_hole_mm": draw(numbers(5, 12, 0.5)),
