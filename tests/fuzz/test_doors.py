@@ -7,6 +7,7 @@ from pathlib import Path
 import pytest
 
 from layout.errors import DocumentError, LayoutError, MidiReadError
+from tests.fuzz import drawing_door
 from tests.fuzz.door import MOST_CPU_S, Door, fault_of
 from tests.fuzz.doors import DOORS
 from tests.fuzz.mutated_tunes import mutated_tune
@@ -44,6 +45,14 @@ def test_changed_inputs_are_answered(door: Door) -> None:
         assert fault is None, f"input {number} of door {door.name}: {fault}"
         answered += not _is_refused(door, data) if number < 20 else 0
     assert answered, "every input was refused: the changes reach nothing behind the reader"
+
+
+def test_the_drawings_to_begin_with_are_read_to_their_last_cut() -> None:
+    checked = [drawing_door.answer(seed) for seed in drawing_door.SEEDS]
+
+    # of three drawings for a machine the third is a record
+    assert [one.good_to_cut for one in checked] == [True, True, False] * len(drawing_door.MACHINES)
+    assert {one.disc.projection_count for one in checked} == {3}
 
 
 def _is_refused(door: Door, data: bytes) -> bool:
