@@ -1,7 +1,7 @@
 """Every door fuzzed, one after the other: `sh tests/run fuzz [SECONDS [FOLDER]]`, half an hour each by default.
 
 What is found lies in FOLDER/DOOR/found, .fuzz by default, each input beside its story, and FOLDER/DOOR/corpus goes on
-growing from run to run. A fault that is mended leaves its input, made small, in tests/fuzz/findings.
+growing from run to run. A fault that is mended leaves its input, made small, in tests/fuzz/kept.
 """
 
 import subprocess

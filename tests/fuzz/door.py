@@ -24,8 +24,8 @@ class Door:
     """One way into the program.
 
     Attributes:
-        name: As in the names of files of findings.
-        suffix: Of those files.
+        name: As in the names of modules and files.
+        suffix: Of files of such inputs.
         seeds: Good inputs to begin with.
         answer: What is tried: bytes in, a value or an exception out.
         mutate: A changed input from an input, at most so many bytes where it grows by chance.
