@@ -22,7 +22,7 @@ from layout.documents import Cutter, Movement, read_movement, read_settings
 from layout.documents.movement import MeasuredStarWheel
 from layout.file_names import CUTTING_FILES
 from tests.fuzz.random_machines import cutters, movements, tunes
-from tests.thorough import tried
+from tests.thorough import THOROUGH
 
 ASKED = read_settings('{"speed": {"mode": "fit", "least": 0.5, "most": 4}}')
 CHORD_MM = 0.001  # how far inside its arc a chord of what is read may lie
@@ -74,7 +74,7 @@ def assert_wheels_have_their_steps(files: dict[str, bytes], movement: Movement) 
             assert apart_deg.min() >= least_deg - 1e-9
 
 
-@settings(max_examples=tried(150))
+@settings(max_examples=150 if THOROUGH else 25)
 @given(movement=movements(), cutter=cutters(), tune=tunes())
 def test_what_is_called_good_reads_back_plays_the_same_and_keeps_its_webs(
     movement: Movement, cutter: Cutter, tune: bytes
@@ -115,7 +115,7 @@ def faulty(movement: Movement, how: str) -> Movement:
 FAULTS = st.sampled_from(["thick star wheels", "no metal to the rim"])
 
 
-@settings(max_examples=tried(30))
+@settings(max_examples=30 if THOROUGH else 8)
 @given(movement=movements(), how=FAULTS, cutter=cutters(), tune=tunes())
 def test_what_has_an_error_is_given_as_a_cutting_file_when_asked_alone_and_says_so(
     movement: Movement, how: str, cutter: Cutter, tune: bytes

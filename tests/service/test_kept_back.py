@@ -24,7 +24,7 @@ from tests.fuzz.test_random_discs import FAULTS, faulty
 from tests.service.api.test_runs import Shop
 from tests.service.conftest import sqlite_alone
 from tests.service.shop import archive_of, planned
-from tests.thorough import tried
+from tests.thorough import THOROUGH
 
 FIT = {"speed": {"mode": "fit", "least": 0.5, "most": 4}}
 SPOILT = {"movement": movements(), "how": FAULTS, "cutter": cutters(), "tune": tunes()}
@@ -48,7 +48,7 @@ def text_of(document: Movement | Cutter, **more: Any) -> bytes:
     return json.dumps(document.model_dump(mode="json", exclude_none=True) | more).encode()
 
 
-@settings(max_examples=tried(20), suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=30 if THOROUGH else 5, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(**SPOILT)
 def test_the_command_keeps_a_faulty_disc_back(movement: Movement, how: str, cutter: Cutter, tune: bytes) -> None:
     with TemporaryDirectory() as folder:
@@ -74,7 +74,7 @@ def shop(any_parts: Parts) -> Any:
 
 
 @sqlite_alone("which discs are given is decided above the store")
-@settings(max_examples=tried(20), suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=30 if THOROUGH else 5, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(**SPOILT)
 def test_http_keeps_a_faulty_disc_back(shop: Shop, movement: Movement, how: str, cutter: Cutter, tune: bytes) -> None:
     def ask(accept: str) -> Any:
@@ -98,7 +98,7 @@ def test_http_keeps_a_faulty_disc_back(shop: Shop, movement: Movement, how: str,
 
 
 @sqlite_alone("which discs are given is decided above the store")
-@settings(max_examples=tried(20), suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=30 if THOROUGH else 5, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(**SPOILT)
 def test_orders_and_runs_keep_a_faulty_disc_back(
     shop: Shop, movement: Movement, how: str, cutter: Cutter, tune: bytes
