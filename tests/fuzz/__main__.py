@@ -1,0 +1,42 @@
+"""Every door fuzzed, one after the other: `sh tests/run fuzz [SECONDS [FOLDER]]`, half an hour each by default.
+
+What is found lies in FOLDER/DOOR/found, .fuzz by default, each input beside its story, and FOLDER/DOOR/corpus goes on
+growing from run to run. A fault that is mended leaves its input, made small, in tests/fuzz/kept.
+"""
+
+import subprocess
+import sys
+
+from tests.fuzz.doors import DOORS
+
+DEFAULT_S = 30 * 60
+FOLDER = ".fuzz"
+ENDS_AFTER_S = 120  # past its time a door is stopped: reading a large corpus takes a while
+
+
+def main() -> int:
+    """0 where no door has a fault."""
+    seconds = int(sys.argv[1]) if len(sys.argv) > 1 else DEFAULT_S
+    folder = sys.argv[2] if len(sys.argv) > 2 else FOLDER
+    return max([fuzzed(name, seconds, folder) for name in DOORS])
+
+
+def fuzzed(name: str, seconds: int, folder: str) -> int:
+    """One door in a process of its own; 1 where it has a fault, or did not come to its end."""
+    sys.stdout.write(f"{name}: {seconds} s\n")
+    sys.stdout.flush()
+    command = [sys.executable, "-m", "tests.fuzz.fuzzing", name, str(seconds), folder]
+    try:
+        done = subprocess.run(
+            command, stderr=subprocess.PIPE, text=True, errors="replace", check=False, timeout=seconds + ENDS_AFTER_S
+        )
+    except subprocess.TimeoutExpired:
+        sys.stdout.write(f"{name}: did not end\n")
+        return 1
+    told = [line for line in done.stderr.splitlines() if not line.startswith(("#", "INFO: Instrumenting"))]
+    sys.stdout.write("\n".join(told[-40 if done.returncode else -1 :]) + "\n")
+    return int(done.returncode != 0)
+
+
+if __name__ == "__main__":
+    sys.exit(main())
