@@ -1,48 +1,47 @@
 """The whole job against the plain way of doing it by the same libraries, side by side in one process.
 
 Ours has all its checks on, orders the cuts and letters the disc, and proves the arrangement the best; the plain way
-chooses greedily and does none of that. Each side in turn; medians of processor time, with the least and the most.
+chooses greedily and does none of that. Each side in turn; medians with the least and the most, in processor time, and
+the median by the clock. Ratios are of processor time: another program beside this one does not count in it.
 """
 
 import statistics
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
+
+import numpy as np
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
 
-from layout.arrange import arrange
 from layout.arrange.arrangement import Arrangement
 from layout.check import check
-from layout.cut import plan_cuts
-from layout.cut.plan import CutPlan
+from layout.check.finding import Level
 from layout.documents import Movement, Settings, shipped_cutter
-from layout.making import making_of
-from layout.mechanics.projection import pattern_of
-from layout.mechanics.spacing import spacing_of
-from layout.mechanics.turning import turning_of
+from layout.mechanics.arrays import frozen_floats, frozen_ints
 from layout.place import place
+from layout.place.disc import Disc
 from layout.play import play
-from layout.read import read_score
-from layout.report import report_on
-from layout.walk import files_of, lay_out
-from layout.write import write_dxf, write_hits, write_svg
+from layout.walk import lay_out
+from layout.write import write_dxf, write_svg
 from layout.write.laid_out import LaidOut
-from layout.write.work_sheet import write_work_sheet
 from tests.bench.opponents.large_disc import large_movement, large_tune
 from tests.bench.opponents.plain_way import (
+    PlainTab,
     plain_chosen,
-    plain_drawn,
     plain_dxf,
     plain_from_arrangement,
     plain_from_bytes,
     plain_notes,
     plain_outlines,
     plain_svg,
+    plain_tabs,
     plain_thin_webs,
 )
 from tests.bench.opponents.table import say, say_table, told
+from tests.bench.opponents.walk_stages import TO_THE_DRAWINGS, Job, our_drawings, planned, stages_of, whole_walk
 
 CUTTER = shipped_cutter("fibre-laser")
 SIZES = (300, 2_000)
@@ -50,106 +49,100 @@ TIMES = 7
 DRAWN_GOAL = {2_000: 8.0}
 WHOLE_GOAL = {300: 1.5, 2_000: 2.5}
 
-Job = Callable[[], object]
-
 
 def drawn(arrangement: Arrangement, movement: Movement, laid_out: LaidOut) -> tuple[bytes, bytes]:
     """From the arrangement to both files: placed, played, checked, the cuts ordered, drawn."""
     disc = place(arrangement, movement, CUTTER)
     play(disc)
     check(disc, arrangement)
-    plan = planned(laid_out)
+    plan = planned(replace(laid_out, disc=disc))
     return write_dxf(plan.disc, CUTTER), write_svg(plan, laid_out)
 
 
-def planned(laid_out: LaidOut) -> CutPlan:
-    """How the disc is cut."""
-    return plan_cuts(
-        laid_out.disc,
-        title=laid_out.title,
-        fingerprint=laid_out.fingerprint,
-        not_good=None if laid_out.good_to_cut else "measured only",
-        part=laid_out.part,
-        order_number=laid_out.order_number,
-    )
-
-
-def from_bytes(tune: bytes, movement: Movement) -> tuple[bytes, bytes]:
-    """From the tune to both files: read, arranged to a proved best, and all that follows."""
-    laid_out = lay_out(tune, movement, CUTTER, Settings())
-    plan = planned(laid_out)
-    return write_dxf(plan.disc, CUTTER), write_svg(plan, laid_out)
-
-
-def in_turn(jobs: dict[str, Job]) -> dict[str, list[float]]:
-    """Milliseconds of processor time of each job, TIMES times, each in its turn; once before for nothing."""
-    took_ms: dict[str, list[float]] = {name: [] for name in jobs}
+def in_turn(jobs: dict[str, Job]) -> dict[str, list[tuple[float, float]]]:
+    """Milliseconds by the processor and the clock of each job, each in its turn, TIMES times after one for nothing."""
+    took_ms: dict[str, list[tuple[float, float]]] = {name: [] for name in jobs}
     for round_number in range(TIMES + 1):
         for name, job in jobs.items():
-            begun_s = time.process_time()
+            clock_s, begun_s = time.perf_counter(), time.process_time()
             job()
             if round_number:
-                took_ms[name].append(1000 * (time.process_time() - begun_s))
+                by_processor_ms = 1000 * (time.process_time() - begun_s)
+                took_ms[name].append((by_processor_ms, 1000 * (time.perf_counter() - clock_s)))
     return took_ms
 
 
-def stages(tune: bytes, movement: Movement, laid_out: LaidOut) -> dict[str, Job]:
-    """Each stage of either way by itself."""
-    score, turning, plan = read_score(tune, sequence=1), turning_of(movement), planned(laid_out)
-    pattern = pattern_of(movement, CUTTER)
-    spacing = spacing_of(movement, turning, pattern, CUTTER.min_web_mm)
-    making, arrangement = making_of(laid_out.disc, plan), laid_out.arrangement
+def stages(tune: bytes, movement: Movement) -> dict[str, Job]:
+    """Each stage of either way by itself, and what ours does besides."""
     notes = plain_notes(tune)
-    outlines = plain_outlines(plain_chosen(notes, movement), movement, CUTTER)
+    tabs = plain_chosen(notes, movement)
+    outlines = plain_outlines(tabs, movement, CUTTER)
     openings = [outline["opening"] for outline in outlines]
-    return {
+    plain: dict[str, Job] = {
         "plain: notes": lambda: plain_notes(tune),
         "plain: choice": lambda: plain_chosen(notes, movement),
-        "plain: outlines": lambda: plain_outlines(plain_chosen(notes, movement), movement, CUTTER),
+        "plain: outlines": lambda: plain_outlines(tabs, movement, CUTTER),
         "plain: webs": lambda: plain_thin_webs(openings, movement, CUTTER),
         "plain: DXF": lambda: plain_dxf(outlines, movement),
         "plain: SVG": lambda: plain_svg(outlines, movement),
-        "ours: reading": lambda: read_score(tune, sequence=1),
-        "ours: rules of nearness": lambda: spacing_of(movement, turning, pattern, CUTTER.min_web_mm),
-        "ours: arranging": lambda: arrange(score, movement, Settings(), spacing),
-        "ours: placing, playing": lambda: play(place(arrangement, movement, CUTTER)),
-        "ours: all checks": lambda: check(laid_out.disc, arrangement),
-        "ours: order of cuts, marks": lambda: planned(laid_out),
-        "ours: disc.dxf": lambda: write_dxf(plan.disc, CUTTER),
-        "ours: disc.svg": lambda: write_svg(plan, laid_out),
-        "besides: report": lambda: report_on(score, arrangement, laid_out.disc),
-        "besides: record.dxf": lambda: write_dxf(plan.record, CUTTER),
-        "besides: hits.csv": lambda: write_hits(plan, laid_out.disc),
-        "besides: work sheet": lambda: write_work_sheet(plan, laid_out, making),
     }
+    ours = stages_of(tune, movement, CUTTER)
+    there = {f"ours: {name}": ours[name] for name in TO_THE_DRAWINGS}
+    return plain | there | {f"besides: {name}": job for name, job in ours.items() if name not in TO_THE_DRAWINGS}
+
+
+def errors_on(tabs: Sequence[PlainTab], laid_out: LaidOut) -> int:
+    """How many errors our checks find on a disc with these projections."""
+    disc = Disc(
+        movement=laid_out.disc.movement,
+        cutter=CUTTER,
+        turning=laid_out.disc.turning,
+        pattern=laid_out.disc.pattern,
+        track_index=frozen_ints(np.array([tab.track for tab in tabs], dtype=np.int64)),
+        edge_angle_rad=frozen_floats([tab.angle_rad for tab in tabs]),
+    )
+    return sum(finding.level == Level.ERROR for finding in check(disc))
+
+
+def worth_of(tabs: Sequence[PlainTab], arrangement: Arrangement) -> int:
+    """What a choice keeps by our weights: its notes stand in the order of the score's."""
+    return int(sum(arrangement.note_weight[note] for tab in tabs for note in tab.notes))
+
+
+def say_kept(tune: bytes, movement: Movement, laid_out: LaidOut) -> None:
+    """What either way keeps, and what is wrong with it."""
+    tabs, ours = plain_chosen(plain_notes(tune), movement), plain_tabs(laid_out.arrangement, movement)
+    worth = laid_out.arrangement.worth
+    rows = [
+        [name, str(len(kept)), str(worth_of(kept, laid_out.arrangement)), str(errors_on(kept, laid_out))]
+        for name, kept in (("the plain way", tabs), ("ours", ours))
+    ]
+    say_table([f"{laid_out.score.note_count} notes", "projections", "worth", "errors by our checks"], rows)
+    say(f"ours: kept {worth.kept} of at most {worth.bound}{', proved' if worth.proved else ''}")
 
 
 def measure(count: int) -> None:
     """Print the tables of one size."""
     tune, movement = large_tune(count), large_movement(count)
     laid_out = lay_out(tune, movement, CUTTER, Settings())
-    arrangement, worth = laid_out.arrangement, laid_out.arrangement.worth
-    plain = plain_drawn(plain_chosen(plain_notes(tune), movement), movement, CUTTER)
-    say(
-        f"{count} notes: ours keeps {laid_out.disc.projection_count} projections, worth {worth.kept} of at most "
-        f"{worth.bound}; the plain way {plain.tab_count}, {plain.thin_webs} of its webs too thin"
-    )
+    arrangement = laid_out.arrangement
+    say_kept(tune, movement, laid_out)
     whole = in_turn(
         {
             "arrangement to DXF and SVG, plain": lambda: plain_from_arrangement(arrangement, movement, CUTTER),
             "arrangement to DXF and SVG, ours": lambda: drawn(arrangement, movement, laid_out),
             "bytes to DXF and SVG, plain": lambda: plain_from_bytes(tune, movement, CUTTER),
-            "bytes to DXF and SVG, ours": lambda: from_bytes(tune, movement),
-            "bytes to all files, ours": lambda: files_of(lay_out(tune, movement, CUTTER, Settings()), not_good="no"),
+            "bytes to DXF and SVG, ours": lambda: our_drawings(tune, movement, CUTTER),
+            "bytes to all files, ours": lambda: whole_walk(tune, movement, CUTTER),
         }
     )
-    middle = {name: statistics.median(took_ms) for name, took_ms in whole.items()}
-    rows = [
-        [name, f"{middle[name]:.1f} ms", f"{min(took_ms):.1f} ms", f"{max(took_ms):.1f} ms"]
-        for name, took_ms in (whole | in_turn(stages(tune, movement, laid_out))).items()
-        for middle[name] in [statistics.median(took_ms)]
-    ]
-    say_table(["job", "median", "least", "most"], rows)
+    rows, middle = [], {}
+    for name, took in (whole | in_turn(stages(tune, movement))).items():
+        by_processor_ms, by_clock_ms = zip(*took, strict=True)
+        middle[name] = statistics.median(by_processor_ms)
+        figures = (middle[name], min(by_processor_ms), max(by_processor_ms), statistics.median(by_clock_ms))
+        rows.append([name, *(f"{figure:.1f} ms" for figure in figures)])
+    say_table(["job", "median", "least", "most", "by the clock"], rows)
     for job, goals in (("arrangement", DRAWN_GOAL), ("bytes", WHOLE_GOAL)):
         times = middle[f"{job} to DXF and SVG, plain"] / middle[f"{job} to DXF and SVG, ours"]
         told(

@@ -11,9 +11,17 @@ from ezdxf.filemanagement import read
 from layout.check.webs import webs_between_openings_hold
 from layout.documents import Settings, shipped_cutter, shipped_movement
 from layout.mechanics.spacing import core_geometries
+from layout.read import read_score
 from layout.walk import files_of, lay_out
 from layout.write.laid_out import LaidOut
-from tests.bench.opponents.plain_way import plain_from_arrangement, plain_outlines, plain_polygon, plain_tabs
+from tests.bench.opponents.large_disc import large_tune
+from tests.bench.opponents.plain_way import (
+    plain_from_arrangement,
+    plain_notes,
+    plain_outlines,
+    plain_polygon,
+    plain_tabs,
+)
 from tests.service.shop import TUNE
 
 CUTTER = shipped_cutter("fibre-laser")
@@ -39,6 +47,30 @@ def test_the_plain_way_cuts_the_same_tabs_at_the_same_places(laid_out: LaidOut) 
 
     assert len(ours) == laid_out.disc.projection_count
     assert slit_corners(plain.dxf) == pytest.approx(ours, abs=1.1e-5)  # both are rounded to 1e-5 mm, either way
+
+
+def test_every_corner_that_the_plain_way_cuts_is_ours_to_a_millionth_of_a_millimetre(laid_out: LaidOut) -> None:
+    disc = laid_out.disc
+    tabs = plain_tabs(laid_out.arrangement, disc.movement)
+    name = "opening" if disc.pattern.cut is None else "cut"
+    outlines = plain_outlines(tabs, disc.movement, CUTTER)
+    plain = np.array([[corner[:2] for corner in outline[name]] for outline in outlines])
+
+    order = np.lexsort((disc.edge_angle_rad, disc.track_index))
+    ours = disc.placed_mm((disc.pattern.cut or disc.pattern.opening).points_mm)[order]
+
+    assert plain == pytest.approx(ours, abs=1e-6)
+
+
+def test_the_plain_way_reads_the_same_notes_in_the_same_order() -> None:
+    score = read_score(large_tune(300), sequence=1)
+
+    notes = plain_notes(large_tune(300))
+
+    assert [(note.pitch, note.channel + 1) for note in notes] == list(
+        zip(score.pitch.tolist(), score.channel.tolist(), strict=True)
+    )
+    assert [note.onset_s for note in notes] == pytest.approx(score.onset_s.tolist(), abs=1e-9)
 
 
 def test_the_openings_of_the_plain_way_are_ours(laid_out: LaidOut) -> None:

@@ -38,14 +38,16 @@ class PlainNote:
 
     onset_s: float
     pitch: int
+    channel: int
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class PlainTab:
-    """A projection: its track, from 0, and the angle of its working edge."""
+    """A projection: its track, from 0, the angle of its working edge, and the notes it plays, by their places."""
 
     track: int
     angle_rad: float
+    notes: tuple[int, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -70,8 +72,8 @@ def plain_from_arrangement(arrangement: Arrangement, movement: Movement, cutter:
 
 def plain_tabs(arrangement: Arrangement, movement: Movement) -> list[PlainTab]:
     """The projections of an arrangement."""
-    plucks = zip(arrangement.track_index.tolist(), arrangement.planned_s.tolist(), strict=True)
-    return [_tab(movement, track, at_s) for track, at_s in plucks]
+    plucks = zip(arrangement.track_index.tolist(), arrangement.planned_s.tolist(), arrangement.notes, strict=True)
+    return [_tab(movement, track, at_s, notes) for track, at_s, notes in plucks]
 
 
 def plain_drawn(tabs: Sequence[PlainTab], movement: Movement, cutter: Cutter) -> PlainFiles:
@@ -84,13 +86,13 @@ def plain_drawn(tabs: Sequence[PlainTab], movement: Movement, cutter: Cutter) ->
 
 
 def plain_notes(tune: bytes) -> list[PlainNote]:
-    """Every note of the tune that is no drum, by mido's own clock."""
+    """Every note of the tune that is no drum, by mido's own clock, in the order of onset, pitch and channel."""
     notes, now_s = [], 0.0
     for message in mido.MidiFile(file=io.BytesIO(tune)):
         now_s += message.time
         if message.type == "note_on" and message.velocity > 0 and message.channel != PERCUSSION_CHANNEL:
-            notes.append(PlainNote(onset_s=now_s, pitch=message.note))
-    return notes
+            notes.append(PlainNote(onset_s=now_s, pitch=message.note, channel=message.channel))
+    return sorted(notes, key=lambda note: (note.onset_s, note.pitch, note.channel))
 
 
 def plain_chosen(notes: Sequence[PlainNote], movement: Movement) -> list[PlainTab]:
@@ -101,11 +103,11 @@ def plain_chosen(notes: Sequence[PlainNote], movement: Movement) -> list[PlainTa
             tracks_of.setdefault(key_of(tooth.pitch), []).append(tooth.track - 1)
     least_s = _least_s(movement)
     first_s = notes[0].onset_s if notes else 0.0
-    best: list[tuple[int, float]] = []
+    best: list[tuple[int, float, int]] = []
     for semitones in TRANSPOSITIONS:
         chosen = []
         last_s = dict.fromkeys(range(len(movement.tracks)), -math.inf)
-        for note in notes:
+        for place, note in enumerate(notes):
             at_s = note.onset_s - first_s
             free = [
                 track for track in tracks_of.get(note.pitch + semitones, ()) if at_s - last_s[track] >= least_s[track]
@@ -113,10 +115,10 @@ def plain_chosen(notes: Sequence[PlainNote], movement: Movement) -> list[PlainTa
             if free:
                 track = min(free, key=lambda one: last_s[one])
                 last_s[track] = at_s
-                chosen.append((track, at_s))
+                chosen.append((track, at_s, place))
         if len(chosen) > len(best):
             best = chosen
-    return [_tab(movement, track, at_s) for track, at_s in best]
+    return [_tab(movement, track, at_s, (place,)) for track, at_s, place in best]
 
 
 def _least_s(movement: Movement) -> list[float]:
@@ -132,13 +134,13 @@ def _least_s(movement: Movement) -> list[float]:
     ]
 
 
-def _tab(movement: Movement, track: int, at_s: float) -> PlainTab:
+def _tab(movement: Movement, track: int, at_s: float, notes: tuple[int, ...]) -> PlainTab:
     """The exact angle: s·φ(t) + asin((d − s·a)/r)."""
     way = 1 if movement.turns == "clockwise" else -1
     turned_rad = math.radians(movement.before_music_deg) + 2 * math.pi * at_s / movement.revolution_s
     _, release_mm = movement.arcs_mm(track)
     beside = (movement.gantry_offset_mm - way * release_mm) / movement.tracks[track].radius_mm
-    return PlainTab(track=track, angle_rad=(way * turned_rad + math.asin(beside)) % (2 * math.pi))
+    return PlainTab(track=track, angle_rad=(way * turned_rad + math.asin(beside)) % (2 * math.pi), notes=notes)
 
 
 def plain_outlines(tabs: Sequence[PlainTab], movement: Movement, cutter: Cutter) -> list[dict[str, list[Vertex]]]:
@@ -255,6 +257,10 @@ def plain_svg(outlines: Sequence[dict[str, list[Vertex]]], movement: Movement) -
     drawing = svgwrite.Drawing(size=(size, size), viewBox=f"{-half_mm} {-half_mm} {2 * half_mm} {2 * half_mm}")
     drawing.add(drawing.circle((0, 0), half_mm, fill="none", stroke="black"))
     drawing.add(drawing.circle((0, 0), movement.disc.centre_hole_mm / 2, fill="none", stroke="black"))
+    for feature in movement.disc.features:
+        for angle in map(math.radians, feature.angles_deg):
+            corners = plain_polygon(_hole(feature, angle)).exterior.coords
+            drawing.add(drawing.polygon([(round(x, 3), round(-y, 3)) for x, y in corners], fill="white"))
     for track in movement.tracks:
         drawing.add(drawing.circle((0, 0), track.radius_mm, fill="none", stroke="grey"))
     for outline in outlines:
