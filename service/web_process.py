@@ -4,6 +4,7 @@ The master imports the app once and every worker is a fork of it, so a worker is
 shared between processes (connections, threads) is opened by `create_app`, which each worker calls for itself.
 """
 
+import gc
 import importlib
 import logging
 import os
@@ -89,3 +90,5 @@ def _warm() -> None:
     for name in COMPUTATION:
         with ONE_AT_A_TIME:
             importlib.import_module(name)
+    # What is imported stays: looking for garbage among it takes a fifth of the time of a layout.
+    gc.freeze()
