@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.problem import Drive, Problem
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import IntArray, counted_out
 
 _ROWS_AT_A_TIME = 1 << 20  # spots at moments looked at together: some tens of megabytes
 
@@ -156,9 +156,8 @@ def _lifted_at(problem: Problem, drive: Drive, in_time: IntArray, moments_ns: Se
         parts = []
         for from_ns, first, last in windows:
             counts = last[begin:end] - first[begin:end]
-            moments = np.repeat(np.arange(begin, end), counts)
-            within = np.arange(len(moments)) - np.repeat(np.cumsum(counts) - counts, counts)
-            spots = in_time[within + np.repeat(first[begin:end], counts)]
+            run, place = counted_out(first[begin:end], counts)
+            moments, spots = run + begin, in_time[place]
             loads = drive.loads(problem.track[spots], problem.asked_ns[spots] - from_ns[moments])
             parts.append((moments, spots, loads))
         moments, spots, loads = (np.concatenate(column) for column in zip(*parts, strict=True))

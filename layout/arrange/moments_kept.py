@@ -148,7 +148,7 @@ def _beside(problem: Problem, on_track: dict[int, list[int]]) -> Iterator[Push]:
             continue
         outers = sorted(outers, key=lambda spot: int(problem.asked_ns[spot]))
         outer_ns = problem.asked_ns[outers]
-        reach_ns = _reach_ns(problem, inners) + _reach_ns(problem, outers)
+        reach_ns = int(problem.reach_ns[inners].max() + problem.reach_ns[outers].max())
         for turn_ns in (-problem.turn_ns, 0, problem.turn_ns):
             inner_ns = problem.asked_ns[inners] - turn_ns
             low = np.searchsorted(outer_ns, inner_ns + pair.from_ns - reach_ns)
@@ -160,9 +160,3 @@ def _beside(problem: Problem, on_track: dict[int, list[int]]) -> Iterator[Push]:
                         yield Push(earlier=outers[place], later=inner, least_ns=turn_ns - pair.from_ns)
                     else:
                         yield Push(earlier=inner, later=outers[place], least_ns=pair.to_ns - turn_ns)
-
-
-def _reach_ns(problem: Problem, spots: list[int]) -> int:
-    """How far any of the spots may be nudged."""
-    later_ns = problem.latest_ns[spots] - problem.asked_ns[spots]
-    return int(max(later_ns.max(), (problem.asked_ns[spots] - problem.earliest_ns[spots]).max()))

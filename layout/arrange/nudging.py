@@ -17,7 +17,6 @@ from layout.arrange.integer_program import Row
 from layout.arrange.linear_program import least_cost
 from layout.arrange.moments_kept import Moments, Push, moments_kept, pushes_of
 from layout.arrange.problem import NS_PER_MS, Problem
-from layout.mechanics.arrays import IntArray
 
 # What each millisecond of a nudge costs, from here on. Up to 6 ms nobody hears it (the just noticeable
 # difference for notes up to 240 ms apart: Friberg and Sundberg, JASA 98, 1995, from memory); up to
@@ -88,7 +87,7 @@ class _Company:
                 self.pushes[push.later].append(push)
         chosen = np.array(spots, dtype=np.int64)
         self._in_time = sorted(zip(problem.asked_ns[chosen].tolist(), spots, strict=True))
-        self._far_ns = 2 * int(_reaches_ns(problem)[chosen].max(initial=0)) + IN_ORDER_NS
+        self._far_ns = 2 * int(problem.reach_ns[chosen].max(initial=0)) + IN_ORDER_NS
         self._chord_of = dict(zip(spots, problem.chord[problem.pluck[chosen]].tolist(), strict=True))
         self._chords: dict[int, list[int]] = defaultdict(list)
         for spot, chord in self._chord_of.items():
@@ -131,7 +130,7 @@ def _moving(problem: Problem, pushes: Sequence[Push], company: _Company) -> list
     """
     near: dict[int, list[int]] = defaultdict(list)
     found: list[int] = list(company.heavy)
-    asked_ns, reach_ns = problem.asked_ns.tolist(), _reaches_ns(problem).tolist()
+    asked_ns, reach_ns = problem.asked_ns.tolist(), problem.reach_ns.tolist()
     for push in pushes:
         spare_ns = asked_ns[push.later] - asked_ns[push.earlier] - push.least_ns
         if push.earlier != push.later and spare_ns < reach_ns[push.earlier] + reach_ns[push.later]:
@@ -162,11 +161,6 @@ def _reached(begin: Iterable[int], near: Mapping[int, Iterable[int]]) -> set[int
                 reached.add(other)
                 waiting.append(other)
     return reached
-
-
-def _reaches_ns(problem: Problem) -> IntArray:
-    """Shape (m,). How far each spot may be nudged, the farther way."""
-    return np.asarray(np.maximum(problem.latest_ns - problem.asked_ns, problem.asked_ns - problem.earliest_ns))
 
 
 def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], company: _Company) -> dict[int, int]:

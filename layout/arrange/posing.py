@@ -10,7 +10,7 @@ from layout.arrange.problem import NO_PLUCK, NS_PER_S, Beside, Drive, Lift, Prob
 from layout.arrange.weights import FADED_S
 from layout.documents.movement import Movement
 from layout.documents.settings import Settings
-from layout.mechanics.arrays import BoolArray, IntArray, frozen_ints
+from layout.mechanics.arrays import BoolArray, IntArray, counted_out, frozen_ints
 from layout.mechanics.drive import lifts_of
 from layout.mechanics.spacing import Spacing
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
@@ -175,9 +175,8 @@ class _Table:
         at[at == len(self.keys)] = 0
         known = self.keys[at] == keys if len(self.keys) else np.zeros(len(keys), dtype=np.bool_)
         plucks, at = plucks[known], at[known]
-        counts = self.start[at + 1] - self.start[at]
-        within = np.arange(counts.sum()) - np.repeat(np.cumsum(counts) - counts, counts)
-        return np.repeat(plucks, counts), self.flat[np.repeat(self.start[at], counts) + within]
+        run, place = counted_out(self.start[at], self.start[at + 1] - self.start[at])
+        return plucks[run], self.flat[place]
 
 
 def _besides(turning: Turning, spacing: Spacing, per_rad: float) -> tuple[Beside, ...]:

@@ -168,6 +168,11 @@ class Problem:
         return np.asarray(self.asked_ns[self.first_spot[self.pluck]])
 
     @cached_property
+    def reach_ns(self) -> IntArray:
+        """Shape (m,). How far each spot may be nudged, the farther way."""
+        return np.asarray(np.maximum(self.latest_ns - self.asked_ns, self.asked_ns - self.earliest_ns))
+
+    @cached_property
     def company(self) -> tuple[tuple[int, ...], ...]:
         """For every track the tracks it may push or come too near to, directly or through others, itself included."""
         root = list(range(len(self.ringing_ns)))

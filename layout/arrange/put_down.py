@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.problem import Beside, Drive, Problem
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import IntArray, counted_out
 
 _MOST_KEPT = 1_000_000  # loads; 8 MB: those of many long windows are worked out anew each time
 
@@ -29,8 +29,7 @@ class MomentsStanding:
         for pair in problem.besides:
             self._pairs[pair.inner_index].append(pair)
             self._pairs[pair.outer_index].append(pair)
-        reach_ns = np.maximum(problem.latest_ns - problem.asked_ns, problem.asked_ns - problem.earliest_ns)
-        self._reach_ns = int(reach_ns.max(initial=0)) if problem.besides else 0
+        self._reach_ns = int(problem.reach_ns.max(initial=0)) if problem.besides else 0
 
     def is_in_the_way(self, spot: int) -> bool:
         """Whether the spot is too near to one that stands, whatever the moments: a quick answer, mostly enough.
@@ -219,15 +218,14 @@ class LoadsStanding:
         released_ns = self._problem.asked_ns[spots][:, None] + np.array([0, turn_ns])
         first = moments_ns.searchsorted(released_ns - widest_ns[:, None], side="right").ravel()
         length = moments_ns.searchsorted(released_ns, side="right").ravel() - first
-        run = np.repeat(np.arange(len(length)), length)
-        begin = np.cumsum(length) - length
-        moment = np.arange(len(run)) + (first - begin)[run]
+        run, moment = counted_out(first, length)
         loads = drive.loads(self._problem.track[spots][run // 2], released_ns.ravel()[run] - moments_ns[moment])
         runs_of: dict[int, list[_Run]] = {spot: [] for spot in spots.tolist()}
-        columns = (np.repeat(spots, 2).tolist(), first.tolist(), begin.tolist(), length.tolist())
-        for spot, place, at, count in zip(*columns, strict=True):
+        end = 0
+        for spot, place, count in zip(np.repeat(spots, 2).tolist(), first.tolist(), length.tolist(), strict=True):
+            begin, end = end, end + count
             if count:
-                runs_of[spot].append(_Run(first=place, last=place + count, load=loads[at : at + count]))
+                runs_of[spot].append(_Run(first=place, last=place + count, load=loads[begin:end]))
         return runs_of
 
     def _place(self, spot: int) -> int:

@@ -24,8 +24,7 @@ def with_spread_chords(problem: Problem) -> Problem:
     Args:
         problem: Without a drive, or with something spread already, it is given back as it is.
     """
-    apart_ns = np.maximum(problem.latest_ns - problem.asked_ns, problem.asked_ns - problem.earliest_ns)
-    largest_nudge_ns = int(apart_ns.max(initial=0))
+    largest_nudge_ns = int(problem.reach_ns.max(initial=0))
     steps_ns = [step * NS_PER_MS for step in SPREAD_STEPS_MS if step * NS_PER_MS <= largest_nudge_ns]
     if problem.drive is None or problem.spread.any() or not steps_ns:
         return problem

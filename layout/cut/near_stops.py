@@ -8,7 +8,7 @@ import shapely
 
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
 
-NEAR_STOPS = 8  # stops looked at round each; with 5 the trips come out 1 % longer, with 12 not shorter
+NEAR_STOPS = 8  # stops looked at round each; with 5 the trips come out 1.4 % longer, with 12 0.2 % shorter and later
 _REACH = 1.3  # of the side a stop has to itself: within it most stops find as many as are looked for
 _LEAST_REACH_MM = 1e-6  # mm; where all stops are at one place
 

@@ -20,10 +20,10 @@ from layout.cut.near_stops import near_stops
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_ints
 
 MOST_MOVED = 3  # stops moved together at once; as in Or's own work
-EXCHANGES_PER_STOP = 3  # stretches exchanged on trial; with 2 some trips come out 0.3 % longer
+EXCHANGES_PER_STOP = 3  # stretches exchanged on trial; with 1 trips of few stops come out longer, with 5 not shorter
 MOST_EXCHANGES = 150  # stretches exchanged on trial; 25 ms, and three times as many gain 0.6 %
-EXCHANGES_BY_STOPS = 75_000  # over the stops: on a long trip each takes longer, and gains a smaller part
-LONGEST_STRETCH = 100  # stops that two exchanged stretches hold together; with 20 the trips come out 0.5 % longer
+EXCHANGES_BY_STOPS = 75_000  # over the stops: at 2,000 all 150 would gain 1 % and take half as long again
+LONGEST_STRETCH = 100  # stops that two exchanged stretches hold together; with 20 the trips come out 0.6 % longer
 LEAST_GAIN_MM = 1e-6  # mm; a nanometre, the grain of the stops
 _GRAIN_DIGITS = 6  # of a stop's place in mm: what processors round apart decides nothing
 _NOT_NEXT_MM = 1e7  # mm; added where two stops must not follow one another: more than any trip could save

@@ -1,4 +1,4 @@
-"""Array types shared by the stages' values, and the one way to freeze an array."""
+"""Array types shared by the stages' values, the one way to freeze an array, and places counted out."""
 
 from collections.abc import Iterable
 
@@ -22,3 +22,17 @@ def frozen_ints(values: Iterable[int] | IntArray) -> IntArray:
     array = np.array(values if isinstance(values, np.ndarray) else list(values), dtype=np.int64)
     array.setflags(write=False)
     return array
+
+
+def counted_out(first: IntArray, count: IntArray) -> tuple[IntArray, IntArray]:
+    """Runs of places end to end: for first 5 and 0, count 2 and 3 the runs are 0 0 1 1 1, the places 5 6 0 1 2.
+
+    Args:
+        first: Shape (n,). The first place of each run.
+        count: Shape (n,). How many places it has; 0 for none.
+
+    Returns:
+        The run and the place, both in as many entries as there are places in all; empty for no runs.
+    """
+    run = np.repeat(np.arange(len(count)), count)
+    return run, np.arange(len(run)) + (first - np.cumsum(count) + count)[run]

@@ -15,7 +15,7 @@ import numpy as np
 import shapely
 
 from layout.documents.feature import Feature
-from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.arrays import FloatArray, IntArray, counted_out
 from layout.mechanics.blank import feature_core_mm
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.polar import Curves, Outline, Strips, outline_of
@@ -103,8 +103,7 @@ class _Cover:
         """Pairs of a place and a strip that lies over it; strips are in the order in which they begin."""
         first = np.searchsorted(self.from_to[:, 0], place - self.longest)
         count = np.searchsorted(self.from_to[:, 0], place) - first
-        which = np.repeat(np.arange(len(place)), count)
-        strip = np.arange(len(which)) - np.repeat(np.cumsum(count) - count - first, count)
+        which, strip = counted_out(first, count)
         over = self.from_to[strip, 1] > place[which]
         return which[over], strip[over]
 

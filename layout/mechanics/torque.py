@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
+from layout.mechanics.arrays import FloatArray, IntArray, counted_out, frozen_floats
 from layout.mechanics.drive import ToothLift, lifts_of
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
@@ -106,9 +106,7 @@ def _lifted(
     begin = np.cumsum(count) - count
     window_s = np.array([min(lift.window_s, turn_s) for teeth in lifts for lift in teeth], dtype=np.float64)
     peak_nmm = np.array([lift.peak_nmm for teeth in lifts for lift in teeth], dtype=np.float64)
-    times = count[track_index]
-    pluck = np.repeat(np.arange(len(track_index)), times)
-    lift = begin[track_index][pluck] + np.arange(len(pluck)) - (np.cumsum(times) - times)[pluck]
+    pluck, lift = counted_out(begin[track_index], count[track_index])
     return _Lifted(pluck=pluck, released_s=from_rest_s[pluck], window_s=window_s[lift], peak_nmm=peak_nmm[lift])
 
 
@@ -119,8 +117,7 @@ def _torques_nmm(lifted: _Lifted, moments_s: FloatArray, turn_s: float) -> tuple
     window_s, peak_nmm = np.repeat(lifted.window_s, 2), np.repeat(lifted.peak_nmm, 2)
     first = np.searchsorted(moments_s, end_s - window_s)
     length = np.searchsorted(moments_s, end_s, side="right") - first
-    tooth = np.repeat(np.arange(len(end_s)), length)
-    moment = np.arange(len(tooth)) + (first - np.cumsum(length) + length)[tooth]
+    tooth, moment = counted_out(first, length)
     share = np.maximum(1 - (end_s[tooth] - moments_s[moment]) / window_s[tooth], 0.0)
     before_nmm = _summed(moment, peak_nmm[tooth] * share, len(moments_s))
     dropped_nmm = _summed(np.searchsorted(moments_s, lifted.released_s), lifted.peak_nmm, len(moments_s))

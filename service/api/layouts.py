@@ -23,6 +23,7 @@ from service.api.hearings import Heard, plucks_response, sound_response
 from service.api.layout_cache import KeptLayout
 from service.api.models.layouts import DespiteQuery, LayoutQuery
 from service.api.operations import hearings, layouts
+from service.api.own_pages import SAFE_METHODS
 from service.api.posted import read_posted
 from service.api.problems import ProblemError
 from service.api.request_models import read_arguments, read_body
@@ -226,7 +227,9 @@ class LayoutTeller:
         if file_name in CUTTING_FILES and not kept.good_to_cut and not marked:
             raise _kept_back(kept, file_name)
         tag = self._tag(kept, file_name, reason)
-        content = b"" if request.if_none_match.contains(tag) else self._content(kept, file_name, reason)
+        # A tune that is posted is answered whole: what is asked of then is no file yet that a client could have.
+        is_known = request.method in SAFE_METHODS and request.if_none_match.contains(tag)
+        content = b"" if is_known else self._content(kept, file_name, reason)
         response = Response(content, content_type=MEDIA_TYPES[file_name])
         is_picture = file_name == "disc.svg"
         if is_picture:

@@ -19,6 +19,7 @@ from layout.mechanics.arrays import FloatArray, frozen_floats, frozen_ints
 from layout.mechanics.spacing import Spacing
 from layout.read import Score
 from tests.bench.opponents.corpus import CUTTER, movement_with, score_of, settings_with
+from tests.bench.opponents.large_disc import FASTEST_SHARE, FREE_SHARE
 from tests.bench.opponents.table import say, say_table
 from tests.outside.posed import spacing_on
 
@@ -28,8 +29,6 @@ SIZES = (500, 1_000, 2_000, 4_000)
 RUNS = 3
 PAUSE_S = 0.5  # between two pieces
 NOTES_PER_S = 12.0  # about that of the rag and the quartet; every piece is played so fast
-FREE_SHARE = 334 / 360  # of a turn of mossbrook-67, from its 16 and 10 degrees without music
-FASTEST_SHARE = 8 / 9  # of its turn
 KB_PER_MB = 1024
 
 

@@ -1,6 +1,6 @@
 """HTTP: a layout by POST against the same work in a process, and a repeat with If-None-Match against an empty route.
 
-One web worker of the service, and one gunicorn worker of the same class with a Flask app of one empty route, on
+One web worker of the service, and one of gunicorn's own threaded workers with a Flask app of one empty route, on
 loopback; a client that asks for one thing after the other, a connection for each, as the service has it. In turn.
 """
 
@@ -24,6 +24,7 @@ from layout.documents import read_settings, shipped_cutter, shipped_movement
 from layout.walk import lay_out
 from layout.write.layout_json import write_layout_json
 from tests.bench.opponents.table import say, say_table, told
+from tests.service.access.free_port import free_port
 
 TOP = Path(__file__).resolve().parents[2]
 TUNE = (TOP / "service" / "demo" / "tune.mid").read_bytes()
@@ -77,13 +78,6 @@ def running(command: list[str], environment: Mapping[str, str], port: int) -> It
     finally:
         process.terminate()
         process.wait()
-
-
-def free_port() -> int:
-    with socket.socket() as probe:
-        probe.bind(("127.0.0.1", 0))
-        port: int = probe.getsockname()[1]
-        return port
 
 
 def form(title: str) -> tuple[str, bytes]:
@@ -177,18 +171,8 @@ def main() -> None:
             "DISCWRIGHT_WRITE_RATE": "1000000/60",
         }
         web = [sys.executable, "-m", "service.commands.main", "web", "--port", str(port), "--workers", "1"]
-        other = [
-            sys.executable,
-            "-m",
-            "gunicorn",
-            "--bind",
-            f"127.0.0.1:{empty_port}",
-            "--workers",
-            "1",
-            "--threads",
-            "8",
-        ]
-        other += ["--keep-alive", "0", "--log-level", "error", "tests.bench.bench_http:empty"]
+        other = [sys.executable, "-m", "gunicorn", "--bind", f"127.0.0.1:{empty_port}", "--workers", "1"]
+        other += ["--threads", "8", "--keep-alive", "0", "--log-level", "error", "tests.bench.bench_http:empty"]
         with running(web, environment, port), running(other, {}, empty_port):
             rows = post_rows(port) + repeat_rows(port, empty_port)
     say_table(["what", "median"], rows)

@@ -1,13 +1,12 @@
 """The door for cutters: a document read, told again and read once more, and where it holds, a tune cut with it."""
 
-import json
 from functools import partial
 
 from layout import walk
 from layout.documents import read_cutter, read_settings, shipped_cutter_ids, shipped_movement, shipped_text
 from layout.errors import DocumentError
 from tests.fuzz.door import Door
-from tests.fuzz.mutated_documents import mutated_document, words_of
+from tests.fuzz.mutated_documents import mutated_document, told_again, words_of
 from tests.fuzz.short_tune import SHORT_TUNE
 from tests.layout.examples import PLAIN
 
@@ -17,10 +16,7 @@ SEEDS = tuple(shipped_text(name) for name in shipped_cutter_ids())
 
 def answer(text: bytes) -> object:
     """The cutter, and the short tune laid out for it with every file: slots for a press, projections for a laser."""
-    cutter = read_cutter(text)
-    told = json.dumps(cutter.model_dump(mode="json", exclude_none=True))
-    again = read_cutter(told)
-    assert again.model_dump(mode="json") == cutter.model_dump(mode="json"), "told and read again, it is another"
+    cutter = told_again(text, read_cutter)
     movement = PLAIN if cutter.kind == "laser" else _SLOTS
     return walk.files_of(walk.lay_out(SHORT_TUNE, movement, cutter, _PLAINLY), not_good="a test")
 

@@ -7,7 +7,7 @@ from layout import walk
 from layout.documents import read_movement, read_settings, shipped_cutter, shipped_movement_ids, shipped_text
 from layout.errors import DocumentError
 from tests.fuzz.door import Door
-from tests.fuzz.mutated_documents import mutated_document, words_of
+from tests.fuzz.mutated_documents import mutated_document, told_again, words_of
 from tests.fuzz.short_tune import SHORT_TUNE
 from tests.layout.examples import PLAIN_DOCUMENT
 
@@ -18,10 +18,7 @@ SEEDS = (json.dumps(PLAIN_DOCUMENT).encode(), *_SHIPPED)
 
 def answer(text: bytes) -> object:
     """The movement, and the short tune laid out on it, with every file."""
-    movement = read_movement(text)
-    told = json.dumps(movement.model_dump(mode="json", exclude_none=True))
-    again = read_movement(told)
-    assert again.model_dump(mode="json") == movement.model_dump(mode="json"), "told and read again, it is another"
+    movement = told_again(text, read_movement)
     return walk.files_of(walk.lay_out(SHORT_TUNE, movement, _LASER, _PLAINLY), not_good="a test")
 
 

@@ -2,7 +2,12 @@
 
 import json
 import random
-from typing import Any
+from collections.abc import Callable
+from typing import Any, TypeVar
+
+from pydantic import BaseModel
+
+DocumentT = TypeVar("DocumentT", bound=BaseModel)
 
 _VALUES: tuple[Any, ...] = (
     *(0, 1, -1, 2, 3, 12, 127, 128, 360, 2000, 2**31, 2**53, 2**63, 10**300),
@@ -38,6 +43,18 @@ def mutated_document(text: bytes, dice: random.Random, words: tuple[str, ...] = 
     if dice.random() < 0.05:
         return _bytes_changed(written, dice)
     return written
+
+
+def told_again(text: bytes, read: Callable[[bytes], DocumentT]) -> DocumentT:
+    """The document as it is read, seen to be the same when it is told and read once more.
+
+    Raises:
+        DocumentError: The text is none.
+    """
+    document = read(text)
+    told = json.dumps(document.model_dump(mode="json", exclude_none=True)).encode()
+    assert read(told).model_dump(mode="json") == document.model_dump(mode="json"), "told and read again, it is another"
+    return document
 
 
 def words_of(texts: tuple[bytes, ...]) -> tuple[str, ...]:

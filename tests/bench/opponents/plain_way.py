@@ -4,7 +4,8 @@ mido's own iteration, a greedy choice note by note for each transposition, one s
 STRtree over them, ezdxf's and svgwrite's entities one by one, each the usual way. It checks webs between openings, to
 the rim, the centre hole and the features, and repeats on a track; it has no nudges, no proof, no load, no order of the
 cuts but by track and angle, and writes no lettering. Nothing of it is slow on purpose: numbers that are the same for
-every projection are worked out once.
+every projection are worked out once. svgwrite checks each attribute unless told not to; ours tells it not to, so both
+ways of it can be had.
 """
 
 import io
@@ -60,14 +61,16 @@ class PlainFiles:
     tab_count: int
 
 
-def plain_from_bytes(tune: bytes, movement: Movement, cutter: Cutter) -> PlainFiles:
+def plain_from_bytes(tune: bytes, movement: Movement, cutter: Cutter, *, svg_checked: bool = True) -> PlainFiles:
     """From the tune to both files."""
-    return plain_drawn(plain_chosen(plain_notes(tune), movement), movement, cutter)
+    return plain_drawn(plain_chosen(plain_notes(tune), movement), movement, cutter, svg_checked=svg_checked)
 
 
-def plain_from_arrangement(arrangement: Arrangement, movement: Movement, cutter: Cutter) -> PlainFiles:
+def plain_from_arrangement(
+    arrangement: Arrangement, movement: Movement, cutter: Cutter, *, svg_checked: bool = True
+) -> PlainFiles:
     """From an arrangement to both files."""
-    return plain_drawn(plain_tabs(arrangement, movement), movement, cutter)
+    return plain_drawn(plain_tabs(arrangement, movement), movement, cutter, svg_checked=svg_checked)
 
 
 def plain_tabs(arrangement: Arrangement, movement: Movement) -> list[PlainTab]:
@@ -76,13 +79,14 @@ def plain_tabs(arrangement: Arrangement, movement: Movement) -> list[PlainTab]:
     return [_tab(movement, track, at_s, notes) for track, at_s, notes in plucks]
 
 
-def plain_drawn(tabs: Sequence[PlainTab], movement: Movement, cutter: Cutter) -> PlainFiles:
+def plain_drawn(
+    tabs: Sequence[PlainTab], movement: Movement, cutter: Cutter, *, svg_checked: bool = True
+) -> PlainFiles:
     """The checks and both drawings."""
     outlines = plain_outlines(tabs, movement, cutter)
     thin = plain_thin_webs([outline["opening"] for outline in outlines], movement, cutter)
-    return PlainFiles(
-        dxf=plain_dxf(outlines, movement), svg=plain_svg(outlines, movement), thin_webs=thin, tab_count=len(tabs)
-    )
+    svg = plain_svg(outlines, movement, is_checked=svg_checked)
+    return PlainFiles(dxf=plain_dxf(outlines, movement), svg=svg, thin_webs=thin, tab_count=len(tabs))
 
 
 def plain_notes(tune: bytes) -> list[PlainNote]:
@@ -250,11 +254,12 @@ def _hole(feature: Feature, angle_rad: float) -> list[Vertex]:
     ]
 
 
-def plain_svg(outlines: Sequence[dict[str, list[Vertex]]], movement: Movement) -> bytes:
+def plain_svg(outlines: Sequence[dict[str, list[Vertex]]], movement: Movement, *, is_checked: bool = True) -> bytes:
     """The preview: rim, tracks, holes, and for each projection its opening, slit, fold line and working edge."""
     half_mm = movement.disc.outer_diameter_mm / 2
     size = f"{2 * half_mm}mm"
-    drawing = svgwrite.Drawing(size=(size, size), viewBox=f"{-half_mm} {-half_mm} {2 * half_mm} {2 * half_mm}")
+    view = f"{-half_mm} {-half_mm} {2 * half_mm} {2 * half_mm}"
+    drawing = svgwrite.Drawing(size=(size, size), viewBox=view, debug=is_checked)
     drawing.add(drawing.circle((0, 0), half_mm, fill="none", stroke="black"))
     drawing.add(drawing.circle((0, 0), movement.disc.centre_hole_mm / 2, fill="none", stroke="black"))
     for feature in movement.disc.features:

@@ -223,6 +223,15 @@ def test_a_file_the_client_has_is_not_sent_again(client: Client) -> None:
     assert second.headers["ETag"] == first.headers["ETag"]
 
 
+def test_a_tune_posted_by_who_has_its_drawing_already_is_answered_with_the_drawing(client: Client) -> None:
+    first = client.post_tune(Accept="image/vnd.dxf")
+
+    second = client.post_tune(Accept="image/vnd.dxf", If_None_Match=first.headers["ETag"])
+
+    assert (second.status_code, second.data) == (200, first.data)
+    assert second.data
+
+
 def test_files_have_entity_tags_of_their_own(faulty_client: Client) -> None:
     path = faulty_client.post_tune().headers["Location"]
     asked = ["", "/record.dxf", "/disc.svg", "/disc.svg?despite_findings=trial", "/disc.svg?despite_findings=other"]
