@@ -3,16 +3,14 @@
 import math
 
 import numpy as np
-import shapely
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, MOST_FINDINGS, Condition, judged, told_worth, unsure_advice
 from layout.check.worth import edge_unsure_mm, feature_unsure_mm
 from layout.documents.feature import Feature
 from layout.mechanics.arrays import FloatArray
-from layout.mechanics.blank import feature_core_mm
-from layout.mechanics.frame import on_disc_mm
-from layout.mechanics.spacing import core_geometries
+from layout.mechanics.blank import row_cores_mm
+from layout.mechanics.openings import radial_reach_mm
 from layout.place.disc import Disc
 
 # An edge of the blank: the finding of a thin web to it, its name, and the movement's number for its diameter.
@@ -58,7 +56,7 @@ def webs_to_the_rim_hold(disc: Disc) -> list[Finding]:
 
     A track whose projections are off the disc leaves no web to speak of; another check says so.
     """
-    rim_mm, reach_mm = disc.movement.disc.outer_diameter_mm / 2, _radial_reach_mm(disc)
+    rim_mm, reach_mm = disc.movement.disc.outer_diameter_mm / 2, radial_reach_mm(disc.turning, disc.pattern)
     return [
         finding
         for index in disc.used_tracks
@@ -69,7 +67,7 @@ def webs_to_the_rim_hold(disc: Disc) -> list[Finding]:
 
 def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
     """An error for a track whose openings leave less than the least web to the centre hole; as for the rim."""
-    hole_mm, reach_mm = disc.movement.disc.centre_hole_mm / 2, _radial_reach_mm(disc)
+    hole_mm, reach_mm = disc.movement.disc.centre_hole_mm / 2, radial_reach_mm(disc.turning, disc.pattern)
     return [
         finding
         for index in disc.used_tracks
@@ -81,7 +79,7 @@ def webs_to_the_centre_hole_hold(disc: Disc) -> list[Finding]:
 def keep_outs_are_clear(disc: Disc) -> list[Finding]:
     """An error where the openings of a track reach into a ring in which nothing may be cut."""
     findings: list[Finding] = []
-    reach_mm = _radial_reach_mm(disc)
+    reach_mm = radial_reach_mm(disc.turning, disc.pattern)
     for index in disc.used_tracks:
         nearest_mm, farthest_mm = reach_mm[index]
         for place, ring in enumerate(disc.movement.keep_out):
@@ -106,16 +104,6 @@ def keep_outs_are_clear(disc: Disc) -> list[Finding]:
             )
             findings += judged(condition, disc.movement)
     return findings
-
-
-def _radial_reach_mm(disc: Disc) -> list[tuple[float, float]]:
-    """For every track the least and greatest distance of its openings from the centre: the same for all of them."""
-    radius_mm, round_mm = disc.turning.radius_mm, disc.pattern.core_round_mm
-    pattern, direction = disc.pattern, disc.turning.direction
-    points_mm = on_disc_mm(pattern.core_points_mm, radius_mm, np.zeros(len(radius_mm)), direction, pattern.strike_u_mm)
-    nearest_mm = shapely.distance(core_geometries(points_mm), shapely.Point(0.0, 0.0)) - round_mm
-    farthest_mm = np.hypot(points_mm[..., 0], points_mm[..., 1]).max(axis=1) + round_mm
-    return list(zip(nearest_mm.tolist(), farthest_mm.tolist(), strict=True))
 
 
 def _web_to(disc: Disc, index: int, edge: tuple[Code, str, str], web_mm: float) -> list[Finding]:
@@ -143,35 +131,32 @@ def webs_to_features_hold(disc: Disc) -> list[Finding]:
 
     Where the openings of a row's features all keep it, but the nearest by less than its numbers are worth, one advice.
     """
-    points_mm = disc.placed_mm(disc.pattern.core_points_mm)
-    cores = core_geometries(points_mm)
     track_unsure_mm = np.array([edge_unsure_mm(disc, index) for index in range(len(disc.movement.tracks))])
     findings: list[Finding] = []
     for row, feature in enumerate(disc.movement.disc.features):
-        webs_mm = np.full((len(feature.angles_deg), disc.projection_count), np.inf)
-        for place, angle_deg in enumerate(feature.angles_deg):
-            core, round_mm = feature_core_mm(feature, math.radians(angle_deg))
-            webs_mm[place] = shapely.distance(cores, core) - round_mm - disc.pattern.core_round_mm
         unsure_mm = track_unsure_mm[disc.track_index] + feature_unsure_mm(disc, row)
-        findings += _webs_to_feature(disc, feature, webs_mm, unsure_mm)
+        findings += _webs_to_row(disc, feature, unsure_mm)
     return findings[:MOST_FINDINGS]
 
 
-def _webs_to_feature(disc: Disc, feature: Feature, webs_mm: FloatArray, unsure_mm: FloatArray) -> list[Finding]:
-    """Of webs of shape (features of the row, n), and how far each projection's may be off, shape (n,)."""
-    over_mm = webs_mm - disc.cutter.min_web_mm
-    thin = np.argwhere(over_mm < -GRAIN_MM)
-    if len(thin):
-        return [
-            _web_to_feature(disc, feature, int(index), float(webs_mm[place, index]), float(unsure_mm[index]))
-            for place, index in thin
-        ]
-    sure_mm = over_mm - unsure_mm
-    index = int(np.argmin(sure_mm.min(axis=0, initial=np.inf))) if sure_mm.size else 0
-    if not sure_mm.size or sure_mm[:, index].min() >= 0:
-        return []
-    nearest = _web_to_feature(disc, feature, index, float(webs_mm[:, index].min()), float(unsure_mm[index]))
-    return [unsure_advice(nearest)]
+def _webs_to_row(disc: Disc, feature: Feature, unsure_mm: FloatArray) -> list[Finding]:
+    """Of one row of features; unsure_mm: how far the webs of each projection to it may be off, shape (n,)."""
+    limit_mm = disc.cutter.min_web_mm
+    holes, hole_round_mm = row_cores_mm(feature)
+    rounds_mm = hole_round_mm + disc.pattern.core_round_mm
+    most_mm = limit_mm + float(unsure_mm.max(initial=0.0)) + GRAIN_MM
+    hole, index, distance_mm = disc.openings.distances_to(holes, most_mm + rounds_mm)
+    webs_mm = distance_mm - hole_round_mm - disc.pattern.core_round_mm
+    by_hole = np.lexsort((index, hole))
+    thin = by_hole[webs_mm[by_hole] - limit_mm < -GRAIN_MM]
+    sure_mm = webs_mm - limit_mm - unsure_mm[index]
+    least_sure = np.lexsort((index, sure_mm))[:1]
+    told = thin if len(thin) else least_sure[sure_mm[least_sure] < 0]
+    found = [
+        _web_to_feature(disc, feature, projection, web_mm, float(unsure_mm[projection]))
+        for projection, web_mm in zip(index[told].tolist(), webs_mm[told].tolist(), strict=True)
+    ]
+    return found if len(thin) else [unsure_advice(finding) for finding in found]
 
 
 def _web_to_feature(disc: Disc, feature: Feature, index: int, web_mm: float, unsure_mm: float) -> Finding:

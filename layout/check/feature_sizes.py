@@ -13,16 +13,14 @@ from typing import Literal
 
 import numpy as np
 import shapely
-from numpy.typing import NDArray
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, told_worth
 from layout.check.worth import WIDTH, edge_unsure_mm, feature_unsure_mm, most_web_unsure_mm, web_unsure_mm
 from layout.documents.cutter import WIDEST_WEB_MM
 from layout.mechanics.arrays import FloatArray
-from layout.mechanics.blank import feature_core_mm
-from layout.mechanics.frame import on_disc_mm
-from layout.mechanics.spacing import core_geometries
+from layout.mechanics.blank import feature_core_mm, row_cores_mm
+from layout.mechanics.openings import radial_reach_mm
 from layout.place.disc import Disc
 
 Kind = Literal["hole", "web", "edge", "slit"]
@@ -184,9 +182,9 @@ def _edges(disc: Disc) -> Iterator[_Size]:
     rim_mm, hole_mm = blank.outer_diameter_mm / 2, blank.centre_hole_mm / 2
     worth = disc.movement.plus_minus
     rim_off_mm, hole_off_mm = worth("/disc/outer_diameter_mm") / 2, worth("/disc/centre_hole_mm") / 2
+    reach_mm = radial_reach_mm(disc.turning, disc.pattern)
     for index in disc.used_tracks:
-        core = _cores(disc, disc.turning.radius_mm[[index]], np.zeros(1))[0]
-        nearest_mm, farthest_mm = _reach_mm(core, disc.pattern.core_round_mm)
+        nearest_mm, farthest_mm = reach_mm[index]
         at = Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index]))
         of = f"from the openings of track {index + 1}"
         off_mm = edge_unsure_mm(disc, index)
@@ -213,12 +211,8 @@ def _webs(disc: Disc, limits_mm: tuple[float, ...]) -> Iterator[_Size]:
 
     Webs above WIDEST_WEB_MM are not looked for, whatever the rule: no disc is that thick.
     """
-    most_mm, round_mm = min(limits_mm[-1], WIDEST_WEB_MM), disc.pattern.core_round_mm
-    cores = _cores(disc, disc.radius_mm, disc.edge_angle_rad)
-    tree = shapely.STRtree(cores)
-    one, two = tree.query(cores, predicate="dwithin", distance=most_mm + 2 * round_mm)
-    one, two = one[one < two], two[one < two]
-    webs_mm = shapely.distance(cores[one], cores[two]) - 2 * round_mm
+    most_mm = min(limits_mm[-1], WIDEST_WEB_MM)
+    one, two, webs_mm = disc.openings.webs_within(most_mm)
     for place, others_count in _thinnest(webs_mm, limits_mm):
         pair = (int(one[place]), int(two[place]))
         tracks = tuple(int(disc.track_index[index]) + 1 for index in pair)
@@ -230,11 +224,10 @@ def _webs(disc: Disc, limits_mm: tuple[float, ...]) -> Iterator[_Size]:
             at=_at(disc, pair, tracks),
         )
     for row, feature in enumerate(disc.movement.disc.features):
-        grown = [feature_core_mm(feature, math.radians(angle_deg)) for angle_deg in feature.angles_deg]
-        holes = np.array([core for core, _ in grown], dtype=np.object_)
-        apart_mm = round_mm + grown[0][1]
-        hole, near = tree.query(holes, predicate="dwithin", distance=most_mm + apart_mm)
-        webs_mm = shapely.distance(holes[hole], cores[near]) - apart_mm
+        holes, hole_round_mm = row_cores_mm(feature)
+        apart_mm = disc.pattern.core_round_mm + hole_round_mm
+        _, near, distance_mm = disc.openings.distances_to(holes, most_mm + apart_mm)
+        webs_mm = distance_mm - apart_mm
         for place, others_count in _thinnest(webs_mm, limits_mm):
             track = int(disc.track_index[near[place]]) + 1
             yield _Size(
@@ -261,11 +254,6 @@ def _at(disc: Disc, openings: tuple[int, ...], tracks: tuple[int, ...]) -> Place
         radius_mm=float(disc.radius_mm[list(openings)].mean()),
         angle_deg=math.degrees(disc.edge_angle_rad[openings[0]]),
     )
-
-
-def _cores(disc: Disc, radius_mm: FloatArray, angle_rad: FloatArray) -> NDArray[np.object_]:
-    pattern, direction = disc.pattern, disc.turning.direction
-    return core_geometries(on_disc_mm(pattern.core_points_mm, radius_mm, angle_rad, direction, pattern.strike_u_mm))
 
 
 def _reach_mm(core: shapely.Geometry, round_mm: float) -> tuple[float, float]:

@@ -17,7 +17,6 @@ from layout.mechanics.blank import feature_core_mm, features_once
 from layout.mechanics.hits import GRAIN_MM2, Hits
 from layout.mechanics.hole_hits import CENTRE_HOLE, HoleHits, hole_hits, hole_named
 from layout.mechanics.punching import cutting_force_n, press_force_n, sheared_length_mm
-from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
 NOT_STRUCK = -1  # the turn of a hole that the press does not strike: there before all others
@@ -84,32 +83,33 @@ def hits_fall_on_whole_metal(disc: Disc) -> list[Finding]:
     """
     if disc.cutter.kind == "laser":
         return []
-    hits = disc.hits
-    cores = core_geometries(hits.placed_mm(disc.pattern.core_points_mm))
-    footprints = np.array([_grown(core, disc.pattern.core_round_mm) for core in cores], dtype=np.object_)
-    over = _over_each_other(disc, hits, footprints) + _over_the_blank(disc, footprints) + _holes_over_holes(disc)
+    over = _over_each_other(disc) + _over_the_blank(disc) + _holes_over_holes(disc)
     return over[:MOST_FINDINGS]
 
 
-def _over_each_other(disc: Disc, hits: Hits, footprints: NDArray[np.object_]) -> list[Finding]:
-    one, two = shapely.STRtree(footprints).query(footprints, predicate="intersects")
-    one, two = one[one < two], two[one < two]
+def _footprints(disc: Disc, hits: IntArray) -> NDArray[np.object_]:
+    round_mm = disc.pattern.core_round_mm
+    return np.array([_grown(core, round_mm) for core in disc.openings.cores[hits]], dtype=np.object_)
+
+
+def _over_each_other(disc: Disc) -> list[Finding]:
+    one, two, _ = disc.openings.webs_within(0.0)
     if not len(one):
         return []  # the usual case, which needs no order
-    place = np.argsort(hits.order())
+    place = np.argsort(disc.hits.order())
     earlier, later = np.where(place[one] < place[two], one, two), np.where(place[one] < place[two], two, one)
-    share = _shares(footprints[later], footprints[earlier])
+    share = _shares(_footprints(disc, later), _footprints(disc, earlier))
     return [
         _over(disc, int(later[pair]), float(share[pair]), _opening_of(disc, earlier[pair]), (int(earlier[pair]),))
         for pair in _by_place(later, earlier, share)
     ]
 
 
-def _over_the_blank(disc: Disc, footprints: NDArray[np.object_]) -> list[Finding]:
+def _over_the_blank(disc: Disc) -> list[Finding]:
     named = _blank_shapes(disc)
-    tree = shapely.STRtree([shape for _, shape in named])
-    hit, hole = tree.query(footprints, predicate="intersects")
-    share = _shares(footprints[hit], np.array([shape for _, shape in named], dtype=np.object_)[hole])
+    shapes = np.array([shape for _, shape in named], dtype=np.object_)
+    hole, hit, _ = disc.openings.distances_to(shapes, disc.pattern.core_round_mm)
+    share = _shares(_footprints(disc, hit), shapes[hole])
     return [
         _over(disc, int(hit[pair]), float(share[pair]), named[hole[pair]][0], ())
         for pair in _by_place(hit, hole, share)

@@ -5,13 +5,11 @@ formed; all have one pattern, so the distance between their cores less twice the
 """
 
 import numpy as np
-import shapely
 
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import GRAIN_MM, MOST_FINDINGS, told_worth, unsure_advice
 from layout.check.worth import most_web_unsure_mm, web_unsure_mm
 from layout.mechanics.arrays import FloatArray, IntArray
-from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
 
@@ -21,14 +19,8 @@ def webs_between_openings_hold(disc: Disc) -> list[Finding]:
     Then advice, at most one for webs along a track and one for webs across: of those that hold, the one that is the
     least sure to, by what the movement's numbers are worth.
     """
-    limit_mm, round_mm = disc.cutter.min_web_mm, disc.pattern.core_round_mm
-    points_mm = disc.placed_mm(disc.pattern.core_points_mm)
-    cores = core_geometries(points_mm)
-    tree = shapely.STRtree(cores)
-    looked_at_mm = limit_mm + most_web_unsure_mm(disc) + 2 * round_mm
-    one, two = tree.query(cores, predicate="dwithin", distance=looked_at_mm)
-    one, two = one[one < two], two[one < two]
-    webs_mm = shapely.distance(cores[one], cores[two]) - 2 * round_mm
+    limit_mm = disc.cutter.min_web_mm
+    one, two, webs_mm = disc.openings.webs_within(limit_mm + most_web_unsure_mm(disc))
     order = np.lexsort((two, one, webs_mm))
     one, two, webs_mm = one[order], two[order], webs_mm[order]
     thin_count = int(np.searchsorted(webs_mm, limit_mm - GRAIN_MM))

@@ -5,6 +5,7 @@ from collections.abc import Iterator
 
 import numpy as np
 import shapely
+from numpy.typing import NDArray
 from shapely.geometry.base import BaseGeometry
 
 from layout.documents.cutter import SAME_PLACE_MM
@@ -37,6 +38,12 @@ def feature_core_mm(feature: Feature, angle_rad: float) -> tuple[BaseGeometry, f
     half_out, half_along = out * feature.width_mm / 2, along * feature.length_mm / 2
     corners = [centre - half_out - half_along, centre + half_out - half_along]
     return shapely.Polygon([*corners, centre + half_out + half_along, centre - half_out + half_along]), 0.0
+
+
+def row_cores_mm(feature: Feature) -> tuple[NDArray[np.object_], float]:
+    """The cores of a whole row, in the order of its angles, and the radius they are all grown by."""
+    grown = [feature_core_mm(feature, math.radians(angle_deg)) for angle_deg in feature.angles_deg]
+    return np.array([core for core, _ in grown], dtype=np.object_), grown[0][1]
 
 
 def features_once(blank: DiscBlank) -> Iterator[tuple[Feature, float]]:

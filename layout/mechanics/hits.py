@@ -17,6 +17,7 @@ from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.hit_order import shortest_order
 from layout.mechanics.projection import Pattern, fitting_tool
+from layout.mechanics.spacing import core_geometries
 from layout.mechanics.table import Table, table_of
 from layout.mechanics.turning import Turning
 
@@ -141,7 +142,7 @@ class Hits:
 
     def _rectangles(self, from_u_mm: float, to_u_mm: float, half_mm: float) -> NDArray[np.object_]:
         corners = [(from_u_mm, -half_mm), (to_u_mm, -half_mm), (to_u_mm, half_mm), (from_u_mm, half_mm)]
-        return np.asarray(shapely.polygons(self.placed_mm(np.array(corners))), dtype=np.object_)
+        return core_geometries(self.placed_mm(np.array(corners)))
 
     def order(self) -> IntArray:
         """Shape (n,). The hits in the order struck.

@@ -10,6 +10,7 @@ from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.hits import Hits
 from layout.mechanics.net_section import MetalLeft, metal_left
+from layout.mechanics.openings import Openings, openings_at
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import Turning
 
@@ -35,6 +36,7 @@ class Disc:
     track_index: IntArray
     edge_angle_rad: FloatArray
     _metal_left: list[MetalLeft | None] = field(default_factory=list, init=False, repr=False)
+    _openings: list[Openings] = field(default_factory=list, init=False, repr=False)
 
     @property
     def projection_count(self) -> int:
@@ -72,6 +74,14 @@ class Disc:
                 metal_left(self.pattern, self.turning, self.track_index, self.edge_angle_rad, features)
             )
         return self._metal_left[0]
+
+    @property
+    def openings(self) -> Openings:
+        """The openings of all projections, made once for all that look at them."""
+        if not self._openings:
+            points_mm = self.placed_mm(self.pattern.core_points_mm)
+            self._openings.append(openings_at(points_mm, self.pattern.core_round_mm))
+        return self._openings[0]
 
     @property
     def used_tracks(self) -> list[int]:
