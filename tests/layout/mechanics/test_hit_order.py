@@ -1,4 +1,7 @@
 import math
+from dataclasses import astuple
+from itertools import product
+from operator import itemgetter
 
 import numpy as np
 import pytest
@@ -6,7 +9,9 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from layout.mechanics.arrays import IntArray
-from layout.mechanics.hit_order import NO_STRIKE, _nearest_before, _Way, length, shortest_order
+from layout.mechanics.hit_order import length, shortest_order
+from layout.mechanics.near_strikes import NO_STRIKE, NearStrikes, near_strikes
+from layout.mechanics.strike_way import LONGEST_RUN, StrikeWay
 from layout.mechanics.table import Table, forward_angles_rad, table_moves, table_of
 
 NOTHING_FIRST = np.zeros((0, 2), dtype=np.int64)
@@ -176,18 +181,56 @@ def test_what_a_move_is_reckoned_to_gain_is_what_it_gains() -> None:
     for _ in range(8):
         table = table_with(list(zip(random.uniform(36, 115, 12), random.uniform(0, 6.2, 12), strict=True)))
         order = random.permutation(12).tolist()
-        way, near = _Way(table, order, NOTHING_FIRST), _nearest_before(table)
-        for move in way._runs_elsewhere(near) + way._runs_turned(near):
-            alone = _Way(table, order, NOTHING_FIRST)
-            assert alone._made(move, set())
-            assert sorted(alone.order) == list(range(12))
-            assert length(table, np.array(alone.order)) - length(table, np.array(order)) == move.loss
+        way, near = StrikeWay(table, order, NOTHING_FIRST), near_strikes(table)
+        for move in way.moves(near):
+            alone = StrikeWay(table, order, NOTHING_FIRST)
+            assert alone.made(move, set())
+            assert sorted(alone.order.tolist()) == list(range(12))
+            assert length(table, alone.order) - length(table, np.array(order)) == move.loss
             moves.append(move)
 
     # of every make: runs as they are, runs turned round, to another place, before all others, and where they stand
     assert {move.turned for move in moves} == {True, False}
     assert any(move.target == NO_STRIKE for move in moves)
     assert any(move.target == move.head for move in moves)
+
+
+def test_the_moves_are_the_best_of_all_by_trying_each_and_measuring_the_whole_way() -> None:
+    random = np.random.default_rng(41)
+    count = 11
+    for _ in range(6):
+        table = table_with(list(zip(random.uniform(36, 115, count), random.uniform(0, 6.2, count), strict=True)))
+        order = random.permutation(count).tolist()
+        near = near_strikes(table)
+
+        found = [astuple(move) for move in StrikeWay(table, order, NOTHING_FIRST).moves(near)]
+
+        assert found == sorted(moves_by_trying_all(table, order, near))
+
+
+def moves_by_trying_all(table: Table, order: list[int], near: NearStrikes) -> list[tuple[int, int, int, int, bool]]:
+    """(loss, head, run, target, turned): every gaining run turned where it stands, each run's best place elsewhere."""
+    now = length(table, np.array(order))
+    moves = []
+    for start, run in product(range(len(order)), range(1, len(order) + 1)):
+        here = order[start : start + run]
+        before, after = order[:start], order[start + run :]
+        if len(here) < run:
+            continue
+        stands_after = before[-1] if before else NO_STRIKE
+        if run > 1 and stands_after in near.strike[here[-1]]:
+            turned_here = np.array(before + here[::-1] + after)
+            moves.append((length(table, turned_here) - now, here[0], run, here[0], True))
+        for turned in (False, True) if run <= min(LONGEST_RUN, len(order) - 1) else ():
+            laid = here[::-1] if turned else here
+            elsewhere = []
+            for target in near.strike[laid[0]].tolist():
+                if target not in here and target != stands_after:
+                    at = 0 if target == NO_STRIKE else (before + after).index(target) + 1
+                    tried = np.array((before + after)[:at] + laid + (before + after)[at:])
+                    elsewhere.append((length(table, tried) - now, here[0], run, target, turned))
+            moves += sorted(elsewhere, key=itemgetter(0))[:1]  # between equals the nearer one
+    return [move for move in moves if move[0] < 0]
 
 
 def rings_of(table: Table) -> list[IntArray]:
