@@ -1,6 +1,7 @@
 """A movement or a cutter as it was asked for: by the id of one that ships or is kept, or as a document sent along."""
 
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 from layout.documents import (
     Cutter,
@@ -15,6 +16,8 @@ from layout.documents import (
 )
 from service.store.documents import document_in_force
 from service.store.store import Store
+
+READ_AT_HAND = 16  # threes of documents; a layout's are asked for with each of its files
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -122,11 +125,7 @@ class Inputs:
             NotShippedError: An id that does not ship.
             DocumentError: A document that is not valid.
         """
-        return Documents(
-            movement=movement_from(self.movement),
-            cutter=cutter_from(self.cutter),
-            settings=settings_from_text(self.settings),
-        )
+        return _documents_read(self.movement, self.cutter, self.settings)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -136,3 +135,10 @@ class Documents:
     movement: Movement
     cutter: Cutter
     settings: Settings
+
+
+@lru_cache(maxsize=READ_AT_HAND)
+def _documents_read(movement: Source, cutter: Source, settings: bytes) -> Documents:
+    return Documents(
+        movement=movement_from(movement), cutter=cutter_from(cutter), settings=settings_from_text(settings)
+    )

@@ -120,8 +120,9 @@ class _Lines(JsonFormatter):
         return {**log_data["line"], **trace}
 
     def add_fields(self, log_data: dict[str, Any], record: logging.LogRecord, message_dict: dict[str, Any]) -> None:
-        super().add_fields(log_data, record, message_dict)
-        log_data["line"] = {
+        if message_dict.get("exc_info"):
+            log_data["exc_info"] = message_dict["exc_info"]
+        log_data["line"] = {  # and of all else that the library would gather nothing
             "time": _moment_of(record),
             "level": record.levelname.lower(),
             "message": without_secrets(record.getMessage()),

@@ -18,7 +18,7 @@ import time
 from collections import Counter, deque
 from concurrent.futures import Future, ThreadPoolExecutor
 from contextlib import suppress
-from functools import partial
+from functools import lru_cache, partial
 from typing import Any, ClassVar
 
 from gunicorn import http
@@ -343,12 +343,15 @@ def address_of(client: Any) -> str:
     Args:
         client: As the socket names its other end.
     """
-    if not isinstance(client, tuple):
-        return ""
+    return _subscriber_of(str(client[0])) if isinstance(client, tuple) else ""
+
+
+@lru_cache(maxsize=1024)  # most ask more than once
+def _subscriber_of(text: str) -> str:
     try:
-        address = ipaddress.ip_address(str(client[0]).partition("%")[0])
+        address = ipaddress.ip_address(text.partition("%")[0])
     except ValueError:
-        return str(client[0])
+        return text
     if isinstance(address, ipaddress.IPv4Address):
         return str(address)
     if address.ipv4_mapped is not None:

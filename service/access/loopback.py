@@ -1,8 +1,10 @@
 """Whether a name or an address is this machine's own."""
 
 import ipaddress
+from functools import lru_cache
 
 
+@lru_cache(maxsize=256)  # asked of every request, and there are few hosts
 def is_loopback(host: str) -> bool:
     """Whether only this machine itself can be meant: localhost, 127.0.0.0/8 or ::1 (RFC 6761 section 6.3, RFC 6890).
 

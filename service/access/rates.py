@@ -12,12 +12,14 @@ import time
 from collections.abc import Callable
 from dataclasses import dataclass
 from enum import StrEnum
+from functools import lru_cache
 
 from limits import RateLimitItem, RateLimitItemPerSecond, WindowStats
 from limits.errors import StorageError
-from limits.storage import MemoryStorage, RedisStorage, Storage
+from limits.storage import RedisStorage, Storage
 from limits.strategies import FixedWindowRateLimiter
 
+from service.access.windows import WindowsInMemory
 from service.settings import AccessSettings, SettingsError
 
 log = logging.getLogger("discwright")
@@ -119,6 +121,7 @@ class Rates:
             self._ask_again_at_s = None
 
 
+@lru_cache(maxsize=1024)  # most ask more than once
 def of_address(address: str | None) -> str:
     """Whose requests without a key are: an IPv4 address, or the network of an IPv6 address.
 
@@ -156,7 +159,7 @@ def _item(rate: tuple[int, int]) -> RateLimitItem:
 
 def _storage(url: str | None) -> Storage:
     if url is None:
-        return MemoryStorage()
+        return WindowsInMemory()
     try:
         # Wanted by many machines alone, so it need not be installed on one.
         from redis import ConnectionPool  # noqa: PLC0415

@@ -136,7 +136,8 @@ def guard(app: Flask, parts: Parts, rates: Rates, clock: Callable[[], datetime] 
     def tell_count(response: Response) -> Response:
         count: Count | None = g.get("count")
         if count is not None:
-            response.headers.update(count.header_fields())
+            for name, value in count.header_fields().items():
+                response.headers[name] = value
         if g.get("by_key", False):  # what one key is shown is not what another is
             response.vary.update(("Authorization", "Cookie"))
         return response

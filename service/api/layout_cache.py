@@ -18,7 +18,7 @@ import tempfile
 import time
 import zipfile
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from importlib.resources import files
 from importlib.resources.abc import Traversable
@@ -34,6 +34,7 @@ SUFFIX = ".zip"
 PART_SUFFIX = ".part"
 OWNER_ONLY = 0o700
 AT_HAND = 16  # layouts that a process keeps unpacked: about half a megabyte each; they are asked for again and again
+RENEWED_AFTER_S = 1.0  # s; so finely is known which was looked at last, so that not every look writes to the disk
 DIGITS = 8  # of the program's digest in a name
 
 
@@ -91,6 +92,7 @@ class LayoutCache:
         self._most_bytes = settings.limits.cache_bytes
         self._abandoned_s = settings.limits.abandoned_part_s
         self.program = program_digest()
+        self._at_hand: dict[Path, tuple[_State, KeptLayout]] = {}  # the one asked for last at the end
         _make_own_folder(self._folder)
 
     def get(self, fingerprint: str, owner_id: str | None = None) -> KeptLayout | None:
@@ -117,16 +119,24 @@ class LayoutCache:
 
     def _read(self, path: Path) -> KeptLayout | None:
         try:
-            layout = _unpacked(path.read_bytes())
+            state = _state_of(os.stat(path))
+            known, layout = self._at_hand.pop(path, (None, None))
+            if layout is None or known != state:
+                with path.open("rb") as file:
+                    state, layout = _state_of(os.fstat(file.fileno())), _unpacked(file.read())
         except FileNotFoundError:
             return None
         except (zipfile.BadZipFile, KeyError, ValueError) as fault:
             log.warning("%s is damaged and removed: %s", path, fault)
             path.unlink(missing_ok=True)
             return None
-        with contextlib.suppress(FileNotFoundError):  # another worker has just let it go
-            os.utime(path)
+        self._put_at_hand(path, _renewed(path, state), layout)
         return layout
+
+    def _put_at_hand(self, path: Path, state: "_State", layout: KeptLayout) -> None:
+        self._at_hand[path] = state, layout
+        for oldest in list(self._at_hand)[:-AT_HAND]:
+            self._at_hand.pop(oldest, None)  # another thread may have been before us
 
     def put(self, layout: KeptLayout) -> None:
         """Keep a layout, and let the least recently used go where there are too many.
@@ -236,12 +246,34 @@ def _packed(layout: KeptLayout) -> bytes:
     return buffer.getvalue()
 
 
+@dataclass(frozen=True, slots=True)
+class _State:
+    """By what a file is known to be the one that was read: another that takes its place has another number."""
+
+    number: int
+    size_bytes: int
+    looked_at_ns: int
+
+
+def _state_of(known: os.stat_result) -> _State:
+    return _State(known.st_ino, known.st_size, known.st_mtime_ns)
+
+
+def _renewed(path: Path, state: _State) -> _State:
+    """The state of a file after a look at it."""
+    now_ns = time.time_ns()
+    if abs(now_ns - state.looked_at_ns) < RENEWED_AFTER_S * 1e9:
+        return state
+    with contextlib.suppress(FileNotFoundError):  # another worker has just let it go
+        os.utime(path, ns=(now_ns, now_ns))
+    return replace(state, looked_at_ns=now_ns)
+
+
 @lru_cache(maxsize=AT_HAND)
 def _was_stopped_by_time(report: bytes) -> bool:
     return bool(json.loads(report)["worth"]["stopped"] == "time")
 
 
-@lru_cache(maxsize=AT_HAND)  # by the bytes themselves: what another worker puts in the place of a file is read anew
 def _unpacked(packed: bytes) -> KeptLayout:
     with zipfile.ZipFile(io.BytesIO(packed)) as archive:
         members = {name: archive.read(name) for name in archive.namelist()}

@@ -199,9 +199,13 @@ class LayoutTeller:
         return response
 
     def layout(self, kept: KeptLayout, reason: str | None) -> Response:
-        """A layout in JSON, with links to the files that can be had; those kept back are left out."""
-        response = json_response(self._told(kept, reason))
-        response.set_etag(self._tag(kept, "layout", reason))
+        """A layout in JSON, with links to the files that can be had; those kept back are left out.
+
+        Nothing of it where the client says that it has it.
+        """
+        tag = self._tag(kept, "layout", reason)
+        response = json_response(None if _has_already(tag) else self._told(kept, reason))
+        response.set_etag(tag)
         return response
 
     def _told(self, kept: KeptLayout, reason: str | None) -> dict[str, Any]:
@@ -227,9 +231,7 @@ class LayoutTeller:
         if file_name in CUTTING_FILES and not kept.good_to_cut and not marked:
             raise _kept_back(kept, file_name)
         tag = self._tag(kept, file_name, reason)
-        # A tune that is posted is answered whole: what is asked of then is no file yet that a client could have.
-        is_known = request.method in SAFE_METHODS and request.if_none_match.contains(tag)
-        content = b"" if is_known else self._content(kept, file_name, reason)
+        content = b"" if _has_already(tag) else self._content(kept, file_name, reason)
         response = Response(content, content_type=MEDIA_TYPES[file_name])
         is_picture = file_name == "disc.svg"
         if is_picture:
@@ -252,6 +254,14 @@ class LayoutTeller:
         if kept.stopped_by_time:  # let go and searched for again, it may be another disc under the same fingerprint
             mark += "-" + hashlib.sha256(kept.files["layout.json"]).hexdigest()[:16]
         return f"{kept.fingerprint}-{self._desk.program}-{what}{mark}"
+
+
+def _has_already(tag: str) -> bool:
+    """Whether the client says that it has what it reads: it is answered 304 then, with a head alone.
+
+    A tune that is posted is answered whole, whatever the client has.
+    """
+    return request.method in SAFE_METHODS and request.if_none_match.contains(tag)
 
 
 def _brought(kept: KeptLayout, file: tuple[str, bytes, str], asked: Request) -> Response:

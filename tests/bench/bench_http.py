@@ -135,7 +135,8 @@ def repeat_rows(port: int, empty_port: int) -> list[list[str]]:
     """What a client has already, and an empty route, in turn: requests a second."""
     links = posted(port, "repeated")
     heads = {}
-    for name, path in (("layout.json", links["layout.json"]), ("disc.dxf", links["disc.dxf"])):
+    whole = links["layout.json"].rpartition("/")[0]  # the layout itself, with its links
+    for name, path in (("the layout", whole), *((name, links[name]) for name in ("layout.json", "disc.dxf"))):
         _, fields, _ = asked(port, f"GET {path} HTTP/1.1")
         heads[name] = f"GET {path} HTTP/1.1\r\nIf-None-Match: {fields['etag']}"
         status, _, _ = asked(port, heads[name])

@@ -1,7 +1,11 @@
-"""A process whose first requests all come at once, before the computation is imported."""
+"""What is imported when: nothing heavy before it is used, and the computation whole by whoever asks first."""
 
 import subprocess
 import sys
+
+# What takes long to import, and whose only use is in a part of the computation or a setting that may not be asked for.
+NOT_FOR_THE_WEB = frozenset({"reportlab", "ezdxf", "mido", "scipy", "fontTools", "alembic", "botocore", "s3fs"})
+HEAVY = NOT_FOR_THE_WEB | {"highspy", "numpy", "shapely", "pydantic", "sqlalchemy", "flask", "jinja2", "orjson"}
 
 # Several threads begin at one moment, as the first requests of a service under load do; each part of the computation
 # comes to the libraries for drawings by another way.
@@ -34,3 +38,17 @@ def test_first_requests_that_come_at_once_all_find_the_computation_whole() -> No
     told = subprocess.run([sys.executable, "-c", ALL_AT_ONCE], check=True, capture_output=True, text=True)
 
     assert told.stdout == "[]\n"
+
+
+def imported_after(statement: str) -> set[str]:
+    """The names of all modules in a new process after a statement."""
+    asked = [sys.executable, "-c", f"{statement}; import sys; print(*sys.modules)"]
+    return set(subprocess.run(asked, check=True, capture_output=True, text=True).stdout.split())
+
+
+def test_importing_layout_imports_nothing_that_takes_long() -> None:
+    assert HEAVY & imported_after("import layout") == set()
+
+
+def test_the_web_is_imported_without_what_only_planning_needs() -> None:
+    assert NOT_FOR_THE_WEB & imported_after("import service.app") == set()

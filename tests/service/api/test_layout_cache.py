@@ -8,7 +8,8 @@ from pathlib import Path
 
 import pytest
 
-from service.api.layout_cache import KeptLayout, LayoutCache
+from service.api import layout_cache
+from service.api.layout_cache import AT_HAND, KeptLayout, LayoutCache
 from service.documents import Inputs, Shipped, Source, Written
 from service.limits import Limits
 from service.settings import PlaceSettings, ServiceSettings, SettingsError
@@ -124,6 +125,67 @@ def test_a_failed_write_leaves_nothing_behind(tmp_path: Path, monkeypatch: pytes
     with pytest.raises(OSError, match="No space left"):
         cache.put(layout(1))
     assert list((tmp_path / "layouts").iterdir()) == []
+
+
+def test_what_another_worker_puts_in_the_place_of_a_file_is_given(tmp_path: Path) -> None:
+    cache, other = LayoutCache(settings(tmp_path)), LayoutCache(settings(tmp_path))
+    before, after = layout(1), layout(1)  # of one fingerprint and size, as of a search that time stopped
+    cache.put(before)
+    assert cache.get(before.fingerprint) == before
+
+    other.put(after)
+
+    assert cache.get(before.fingerprint) == after != before
+
+
+def test_a_layout_at_hand_that_another_worker_lets_go_or_that_is_damaged_is_not_given(tmp_path: Path) -> None:
+    cache, other = LayoutCache(settings(tmp_path)), LayoutCache(settings(tmp_path))
+    for number in (1, 2):
+        cache.put(layout(number))
+        assert cache.get(layout(number).fingerprint) is not None
+
+    other.let_go(layout(1).fingerprint)
+    cache._path(layout(2).fingerprint).write_bytes(b"PK of old")
+
+    assert cache.get(layout(1).fingerprint) is None
+    assert cache.get(layout(2).fingerprint) is None
+
+
+def test_a_layout_at_hand_is_not_read_again(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    kept = layout(1)
+    put_in_order(cache, kept)
+    cache.get(kept.fingerprint)  # it is old, so this look renews it
+    monkeypatch.setattr(layout_cache, "_unpacked", lambda _: pytest.fail("read again"))
+
+    again = cache.get(kept.fingerprint)
+
+    assert again == kept
+
+
+def test_looks_renew_a_file_every_second_and_not_each_time(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    put_in_order(cache, layout(1))
+    path = cache._path(layout(1).fingerprint)
+
+    cache.get(layout(1).fingerprint)
+    first_ns = path.stat().st_mtime_ns
+    cache.get(layout(1).fingerprint)
+    second_ns = path.stat().st_mtime_ns
+    os.utime(path, ns=(first_ns - 1_100_000_000, first_ns - 1_100_000_000))  # as if 1.1 s had passed
+    cache.get(layout(1).fingerprint)
+
+    assert first_ns == second_ns > FAR_PAST_NS
+    assert path.stat().st_mtime_ns > first_ns
+
+
+def test_so_many_layouts_are_at_hand_and_no_more(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    for number in range(AT_HAND + 3):
+        cache.put(layout(number))
+        cache.get(layout(number).fingerprint)
+
+    assert len(cache._at_hand) == AT_HAND
 
 
 def test_another_program_s_layouts_are_not_given_out(tmp_path: Path) -> None:

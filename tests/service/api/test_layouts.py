@@ -4,6 +4,7 @@ from io import BytesIO
 import pytest
 
 from layout.documents import shipped_movement
+from service.api.layouts import LayoutTeller
 from tests.service.api.conftest import ClientFor
 from tests.service.fakes import HEARING_FILES, LASER_FILES, THIN_WEB, TUNE, Client, FakePlanner
 
@@ -223,13 +224,28 @@ def test_a_file_the_client_has_is_not_sent_again(client: Client) -> None:
     assert second.headers["ETag"] == first.headers["ETag"]
 
 
-def test_a_tune_posted_by_who_has_its_drawing_already_is_answered_with_the_drawing(client: Client) -> None:
-    first = client.post_tune(Accept="image/vnd.dxf")
+def test_a_layout_the_client_has_is_neither_told_again_nor_put_together(
+    client: Client, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    path = client.post_tune().headers["Location"]
+    first = client.get(path)
+    monkeypatch.setattr(LayoutTeller, "_told", lambda *_: pytest.fail("what the client has was put together"))
 
-    second = client.post_tune(Accept="image/vnd.dxf", If_None_Match=first.headers["ETag"])
+    second = client.get(path, If_None_Match=first.headers["ETag"])
 
-    assert (second.status_code, second.data) == (200, first.data)
-    assert second.data
+    own = {"Request-Id", "RateLimit", "Date", "Content-Length", "Content-Type"}  # of each answer, and of what is sent
+    heads = [{name: value for name, value in answer.headers if name not in own} for answer in (first, second)]
+    assert (second.status_code, second.data) == (304, b"")
+    assert heads[0] == heads[1]
+
+
+@pytest.mark.parametrize("accept", ["application/json", "image/svg+xml"])
+def test_what_is_posted_is_answered_whole_whatever_the_client_has(client: Client, accept: str) -> None:
+    first = client.post_tune(Accept=accept)
+
+    second = client.post_tune(Accept=accept, If_None_Match=first.headers["ETag"])
+
+    assert (second.status_code, second.data) == (first.status_code, first.data)
 
 
 def test_files_have_entity_tags_of_their_own(faulty_client: Client) -> None:
