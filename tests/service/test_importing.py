@@ -4,8 +4,8 @@ import subprocess
 import sys
 
 # What takes long to import, and whose only use is in a part of the computation or a setting that may not be asked for.
-NOT_FOR_THE_WEB = frozenset({"reportlab", "ezdxf", "mido", "scipy", "fontTools", "alembic", "botocore", "s3fs"})
-HEAVY = NOT_FOR_THE_WEB | {"highspy", "numpy", "shapely", "pydantic", "sqlalchemy", "flask", "jinja2", "orjson"}
+NOT_FOR_THE_WEB = frozenset({"reportlab", "ezdxf", "scipy", "fontTools", "alembic", "botocore", "s3fs"})
+HEAVY = NOT_FOR_THE_WEB | {"mido", "highspy", "numpy", "shapely", "pydantic", "sqlalchemy", "flask", "jinja2", "orjson"}
 
 # Several threads begin at one moment, as the first requests of a service under load do; each part of the computation
 # comes to the libraries for drawings by another way.
