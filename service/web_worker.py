@@ -37,6 +37,7 @@ PIECE_BYTES = 64 * 1024  # taken from a connection at a time
 LEAVE_TO_OTHERS_S = 0.05
 MOST_TAKEN_AT_ONCE = 64  # connections
 LOOK_EVERY_S = 0.25  # at whose time is up
+SIGN_OF_LIFE_EVERY_S = 0.5  # s; gunicorn writes one at every turn of the loop, some thousands a second
 STOP_LINGER_S = 2.0  # s; that a process told to stop waits for the rest of a request
 IPV6_NETWORK_BITS = 64  # what one customer has at least (RFC 6177)
 ANSWER_FAULTS = (InvalidResponseHeader, InvalidResponseHeaderName)  # of the app's own answer
@@ -123,6 +124,7 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         self._reading: Counter[str] = Counter()  # by address
         self._most_reading = max(1, int(self.cfg.threads * READING_SHARE))
         self._takes_all_the_same_at_s = 0.0
+        self._sign_of_life_due_s = 0.0
         self._stops_at_s: float | None = None
 
     def get_thread_pool(self) -> ThreadPoolExecutor:
@@ -131,6 +133,13 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         return ThreadPoolExecutor(max_workers=self.cfg.threads)
 
     # The loop.
+
+    def notify(self) -> None:
+        """Show the arbiter that the loop turns."""
+        now_s = time.monotonic()
+        if now_s >= self._sign_of_life_due_s:
+            self._sign_of_life_due_s = now_s + SIGN_OF_LIFE_EVERY_S
+            super().notify()
 
     def set_accept_enabled(self, enabled: bool) -> None:  # noqa: FBT001 -- as gunicorn calls it
         """Take new connections as they come, or leave them to the other processes."""
@@ -182,11 +191,12 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         self._gathering[connection] = None
         self._of_address[connection.address] += 1
         self.poller.register(connection.sock, selectors.EVENT_READ, partial(self._gather, connection))
+        self._gather(connection)  # most send their request with the connection
         return True
 
     # Requests on their way.
 
-    def _gather(self, connection: Connection, _: Any) -> None:
+    def _gather(self, connection: Connection, _: Any = None) -> None:
         if connection not in self._gathering:
             return  # let go in this very turn
         try:

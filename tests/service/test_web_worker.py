@@ -13,9 +13,11 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from gunicorn.config import Config
 
+from service import web_worker
 from service.api.problems import PROBLEMS
-from service.web_worker import address_of
+from service.web_worker import SIGN_OF_LIFE_EVERY_S, GatheringWorker, address_of
 from tests.service.quick_web import LONG_BYTES, QUICK, SLOW_S
 
 SOON_S = 1.0
@@ -301,3 +303,28 @@ def test_a_request_that_cannot_be_read_is_told_why_like_every_other_error(quick:
     kind = PROBLEMS[name]
     assert (told["type"], told["status"], told["try_again"]) == (kind.type, kind.status, False)
     assert told["detail"]
+
+
+class Signs:
+    """What gunicorn keeps for a worker's signs of life."""
+
+    def __init__(self) -> None:
+        self.count = 0
+
+    def notify(self) -> None:
+        self.count += 1
+
+
+def test_a_loop_shows_a_sign_of_life_when_one_is_due_and_not_at_every_turn(monkeypatch: pytest.MonkeyPatch) -> None:
+    worker, signs, now_s = GatheringWorker.__new__(GatheringWorker), Signs(), [100.0]
+    worker.tmp, worker._sign_of_life_due_s = signs, 0.0
+    monkeypatch.setattr(web_worker.time, "monotonic", lambda: now_s[0])
+
+    for _ in range(1000):  # turns in no time
+        worker.notify()
+    at_once = signs.count
+    now_s[0] += SIGN_OF_LIFE_EVERY_S
+    worker.notify()
+
+    assert (at_once, signs.count) == (1, 2)
+    assert Config().timeout >= 10 * SIGN_OF_LIFE_EVERY_S  # s; what the service leaves as gunicorn has it
