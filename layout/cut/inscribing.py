@@ -8,9 +8,9 @@ from itertools import product
 
 import numpy as np
 import shapely
-from shapely import affinity
 from shapely.geometry.base import BaseGeometry
 
+from layout.cut.free_room import FreeRoom, free_room
 from layout.cut.plan import Lettering
 from layout.cut.room import CLEAR_MM, Rooms
 from layout.cut.wording import Inscription
@@ -28,15 +28,14 @@ _HALF_TURN_DEG = 180
 # Below and above the centre first, then ever more to the sides.
 _AROUND_DEG = sorted(range(0, 360, STEP_DEG), key=lambda angle: (abs(abs(angle - 180) - 90), -angle))
 
-PLACES_AT_ONCE = 500  # places; the first that fits is often an early one, and a call for each would cost more
 BLOCKS_KEPT = 512  # blocks; those of a few drawings, so that each is drawn once however many places are tried
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class _Line:
-    """One line of a block: its strokes, and the corners of the box they fill."""
+class _Block:
+    """A block: the strokes of each of its lines, and the corners of the boxes they fill, shape (n, 2)."""
 
-    strokes_mm: tuple[FloatArray, ...]
+    strokes_mm: tuple[tuple[FloatArray, ...], ...]
     low_mm: FloatArray
     high_mm: FloatArray
 
@@ -89,25 +88,35 @@ class _Search:
         turn_rad: By how much the block must be turned to stand on the disc.
     """
 
-    room: BaseGeometry
+    room: FreeRoom
     centres_mm: FloatArray
     turn_rad: float
 
 
 def _placed(rooms: Rooms, written: list[Lettering], left: list[Inscription], rim_mm: float) -> list[Lettering]:
     """The first of the lines left, with as many as can stand with it; none where there is no room for it."""
-    taken = shapely.union_all([shapely.MultiLineString(line.strokes_mm).convex_hull for line in written])
-    taken = taken.buffer(CLEAR_MM)
-    together = [_block_of(left[:count]) for count in range(len(left), 0, -1)]
-    shorter: list[tuple[str, ...]] = [(form,) for form in left[0].forms[1:]]
-    for room, blocks in ((rooms.seen, together), (rooms.seen, shorter), (rooms.hidden, together + shorter)):
-        found = _first_that_fits(room().difference(taken), blocks, rim_mm)
+    taken = [shapely.MultiPoint(np.concatenate(line.strokes_mm)).convex_hull for line in written]
+    for room, blocks in _rooms_and_blocks(rooms, left):
+        found = _first_that_fits(_clear_of(taken, room), blocks, rim_mm)
         if found:
             return found
-    warnings = [line for line in left if line.is_warning]
-    if not left[0].is_warning:
-        return []
-    return _first_that_fits(rooms.between().difference(taken), [_block_of(warnings), _block_of(left[:1])], rim_mm)
+    return []
+
+
+def _rooms_and_blocks(rooms: Rooms, left: list[Inscription]) -> Iterator[tuple[BaseGeometry, list[tuple[str, ...]]]]:
+    """Where to look for room, and for what, the best first."""
+    together = [_block_of(left[:count]) for count in range(len(left), 0, -1)]
+    shorter: list[tuple[str, ...]] = [(form,) for form in left[0].forms[1:]]
+    yield rooms.seen, together
+    yield rooms.seen, shorter
+    yield rooms.hidden, together + shorter
+    if left[0].is_warning:
+        warnings = [line for line in left if line.is_warning]
+        yield rooms.between, [_block_of(warnings), _block_of(left[:1])]
+
+
+def _clear_of(taken: list[BaseGeometry], room: BaseGeometry) -> BaseGeometry:
+    return room.difference(shapely.union_all(taken).buffer(CLEAR_MM)) if taken else room
 
 
 def _block_of(lines: list[Inscription]) -> tuple[str, ...]:
@@ -115,16 +124,15 @@ def _block_of(lines: list[Inscription]) -> tuple[str, ...]:
 
 
 def _first_that_fits(room: BaseGeometry, blocks: list[tuple[str, ...]], rim_mm: float) -> list[Lettering]:
-    for search in _searches(room, rim_mm) if blocks else ():
-        shapely.prepare(search.room)
-        near_mm = search.centres_mm[shapely.contains_xy(search.room, search.centres_mm)]
-        for texts, height_mm in _tries(blocks) if len(near_mm) else ():
+    for search in _searches(free_room(room), rim_mm) if blocks else ():
+        centres_mm = search.room.centres_within_mm(search.centres_mm)
+        for texts, height_mm in _tries(blocks) if len(centres_mm) else ():
             block = _block(texts, height_mm)
-            at_mm = _first_fit_mm(search.room, near_mm, block)
+            at_mm = search.room.first_fit_mm(centres_mm, block.low_mm, block.high_mm)
             if at_mm is not None:
                 return [
-                    Lettering(layer="MARKS", text=text, strokes_mm=_on_disc(line, at_mm, search))
-                    for text, line in zip(texts, block, strict=True)
+                    Lettering(layer="MARKS", text=text, strokes_mm=_on_disc(strokes_mm, at_mm, search))
+                    for text, strokes_mm in zip(texts, block.strokes_mm, strict=True)
                 ]
     return []
 
@@ -136,7 +144,7 @@ def _tries(blocks: list[tuple[str, ...]]) -> Iterator[tuple[tuple[str, ...], flo
         yield from product(blocks, heights_mm)
 
 
-def _searches(room: BaseGeometry, rim_mm: float) -> Iterator[_Search]:
+def _searches(room: FreeRoom, rim_mm: float) -> Iterator[_Search]:
     """Level everywhere, below and above the centre first; then turned, the more level the sooner.
 
     The tops of turned letters point to the rim above the centre, and to the centre below it.
@@ -150,47 +158,27 @@ def _searches(room: BaseGeometry, rim_mm: float) -> Iterator[_Search]:
         down = around_deg >= _HALF_TURN_DEG
         turn_rad = math.radians(around_deg - (270 if down else 90))
         column_mm = np.stack([np.zeros_like(outermost_mm), -outermost_mm if down else outermost_mm], axis=-1)
-        turned = affinity.rotate(room, -turn_rad, origin=(0, 0), use_radians=True)
-        yield _Search(room=turned, centres_mm=column_mm, turn_rad=turn_rad)
+        yield _Search(room=room.turned(-turn_rad), centres_mm=column_mm, turn_rad=turn_rad)
 
 
-def _on_disc(line: _Line, at_mm: FloatArray, search: _Search) -> tuple[FloatArray, ...]:
+def _on_disc(strokes_mm: tuple[FloatArray, ...], at_mm: FloatArray, search: _Search) -> tuple[FloatArray, ...]:
     cos, sin = math.cos(search.turn_rad), math.sin(search.turn_rad)
     turned = np.array([(cos, sin), (-sin, cos)])
-    return tuple(frozen_floats((stroke + at_mm) @ turned) for stroke in line.strokes_mm)
+    return tuple(frozen_floats((stroke + at_mm) @ turned) for stroke in strokes_mm)
 
 
 @lru_cache(maxsize=BLOCKS_KEPT)
-def _block(texts: tuple[str, ...], height_mm: float) -> tuple[_Line, ...]:
+def _block(texts: tuple[str, ...], height_mm: float) -> _Block:
     """The lines of a block, which is centred on (0, 0)."""
     pitch_mm = height_mm * LINE_PITCH_HEIGHTS
     top_mm = ((len(texts) - 1) * pitch_mm - height_mm) / 2
     lines = []
     for place, text in enumerate(texts):
         down_mm = np.array([0.0, top_mm - place * pitch_mm])
-        strokes = tuple(frozen_floats(stroke + down_mm) for stroke in strokes_mm(text, height_mm))
-        points = np.concatenate(strokes)
-        lines.append(
-            _Line(
-                strokes_mm=strokes,
-                low_mm=frozen_floats(points.min(axis=0)),
-                high_mm=frozen_floats(points.max(axis=0)),
-            )
-        )
-    return tuple(lines)
-
-
-def _first_fit_mm(room: BaseGeometry, centres_mm: FloatArray, block: tuple[_Line, ...]) -> FloatArray | None:
-    """The first centre round which every line's box lies in the room; None where there is none."""
-    for begin in range(0, len(centres_mm), PLACES_AT_ONCE):
-        left_mm = centres_mm[begin : begin + PLACES_AT_ONCE]
-        # Corners are cheap to look up, whole boxes are not: most places fail at a corner.
-        for line, is_high in product(block, product((False, True), repeat=2)):
-            corner_mm = np.where(is_high, line.high_mm, line.low_mm)
-            left_mm = left_mm[shapely.intersects_xy(room, left_mm + corner_mm)]
-        for line in block:
-            low, high = line.low_mm + left_mm, line.high_mm + left_mm
-            left_mm = left_mm[shapely.covers(room, shapely.box(low[:, 0], low[:, 1], high[:, 0], high[:, 1]))]
-        if len(left_mm):
-            return np.asarray(left_mm[0])
-    return None
+        lines.append(tuple(frozen_floats(stroke + down_mm) for stroke in strokes_mm(text, height_mm)))
+    points = [np.concatenate(line) for line in lines]
+    return _Block(
+        strokes_mm=tuple(lines),
+        low_mm=frozen_floats(np.array([of_line.min(axis=0) for of_line in points])),
+        high_mm=frozen_floats(np.array([of_line.max(axis=0) for of_line in points])),
+    )

@@ -1,11 +1,13 @@
 """The index mark, which shows a wrong side."""
 
+from collections.abc import Iterator
+
 import numpy as np
 import shapely
 from shapely.geometry.base import BaseGeometry
 
 from layout.cut.plan import Outlines
-from layout.cut.room import Rooms
+from layout.cut.room import FreeMetal
 from layout.mechanics.arrays import FloatArray, frozen_floats
 
 # Lengths of the index mark: as parts of the disc's diameter, from the first, so that it is seen in a picture of
@@ -16,7 +18,7 @@ MARK_LENGTHS_MM = (6.0, 4.0, 3.0, 2.0, 1.5, 1.0)
 STEP_MM = 0.5  # mm; how finely places are tried along a radius
 
 
-def index_mark(rooms: Rooms, *, rim_mm: float, direction: int) -> Outlines | None:
+def index_mark(metal: FreeMetal, *, rim_mm: float, direction: int) -> Outlines | None:
     """A stroke along the radius at disc angle 0 with one barb, which points the way the disc turns.
 
     A disc drawn from the wrong side shows the barb on the wrong side. The mark stands between the
@@ -24,29 +26,35 @@ def index_mark(rooms: Rooms, *, rim_mm: float, direction: int) -> Outlines | Non
     is as large as a picture of the disc needs, and smaller only where that finds room nowhere.
 
     Args:
-        rooms: Where there is room, seen from the label side.
+        metal: Where there is room, seen from the label side.
         rim_mm: The disc's radius.
         direction: +1 for a disc that turns clockwise seen from the label side, else −1.
 
     Returns:
         The mark seen from the label side; None where there is no room at all.
     """
-    tracks_from_mm, tracks_to_mm = rooms.tracks_mm
-    outside_mm = np.array([(tracks_to_mm + rim_mm) / 2])
-    inside_mm = np.arange(tracks_from_mm, 0.0, -STEP_MM)
-    anywhere_mm = np.arange(rim_mm, 0.0, -STEP_MM)
-    seen, hidden = rooms.seen(), rooms.hidden()
     large_mm = [max(share * 2 * rim_mm, WELL_SEEN_MM) for share in MARK_SHARES]
     small_mm = [length_mm for length_mm in MARK_LENGTHS_MM if length_mm < large_mm[-1]]
     for lengths_mm in (large_mm, small_mm):
-        for room, places_mm in ((seen, outside_mm), (seen, inside_mm), (hidden, inside_mm)):
+        for room, places_mm in _rooms_and_places(metal, rim_mm):
             mark = _mark_in(room, places_mm, lengths_mm, direction)
             if mark is not None:
                 return mark
-    return _mark_in(rooms.between(), anywhere_mm, large_mm + small_mm, direction)
+    anywhere_mm = np.arange(rim_mm, 0.0, -STEP_MM)
+    return _mark_in(metal.between, anywhere_mm, large_mm + small_mm, direction)
+
+
+def _rooms_and_places(metal: FreeMetal, rim_mm: float) -> Iterator[tuple[BaseGeometry, FloatArray]]:
+    """Where a mark may stand, the best first, and radii of its middle: outside the tracks, inside, under a clamp."""
+    tracks_from_mm, tracks_to_mm = metal.tracks_mm
+    inside_mm = np.arange(tracks_from_mm, 0.0, -STEP_MM)
+    yield metal.seen, np.array([(tracks_to_mm + rim_mm) / 2])
+    yield metal.seen, inside_mm
+    yield metal.hidden, inside_mm
 
 
 def _mark_in(room: BaseGeometry, places_mm: FloatArray, lengths_mm: list[float], direction: int) -> Outlines | None:
+    shapely.prepare(room)
     for length_mm in lengths_mm:
         half_mm = length_mm / 2
         shape = np.array([(-half_mm, 0.0), (half_mm, 0.0), (0.0, -direction * half_mm)])

@@ -9,13 +9,12 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
-import shapely
 
 from layout.cut.plan import Circles, CutPath, Drawing, Entity, Lettering, Outlines, Points
 from layout.cut.striking import hit_order, strike_path
 from layout.cut.touring import short_round_trip
 from layout.mechanics.arrays import FloatArray, IntArray
-from layout.mechanics.spacing import core_geometries
+from layout.mechanics.hole_hits import HoleHits
 from layout.place.disc import Disc
 
 # mm; a web between two openings is heated from both, and loses its heat only along itself, L²/a for a length L: a
@@ -34,13 +33,9 @@ def cutting_order(disc: Disc) -> IntArray:
 
 def hot_pairs(disc: Disc) -> IntArray:
     """Shape (m, 2). Pairs of projections, the lower index first, with a web of less than HOT_WEB_MM between them."""
-    pattern = disc.pattern
-    placed_mm = disc.placed_mm(pattern.core_points_mm)
-    openings = core_geometries(placed_mm)
-    within_mm = HOT_WEB_MM + 2 * pattern.core_round_mm
-    pairs = shapely.STRtree(openings).query(openings, predicate="dwithin", distance=within_mm).T
-    pairs = pairs[pairs[:, 0] < pairs[:, 1]]
-    return np.asarray(pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))], dtype=np.int64)
+    lower, higher, _ = disc.openings.webs_within(HOT_WEB_MM)
+    order = np.lexsort((higher, lower))
+    return np.column_stack([lower[order], higher[order]])
 
 
 def _begun_at_mm(disc: Disc) -> FloatArray:
@@ -62,7 +57,7 @@ class _Strokes:
     length_mm: FloatArray
 
 
-def path_of(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
+def path_of(disc: Disc, drawing: Drawing, order: IntArray, struck: tuple[HoleHits, ...]) -> CutPath:
     """What the machine travels for a drawing.
 
     A circle is begun at its +X side. Of a press the marks and the strikes count: those on holes it
@@ -72,25 +67,27 @@ def path_of(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
         disc: The disc.
         drawing: What is cut and marked, in cutting order.
         order: Shape (n,). Projection indices in cutting order.
+        struck: What a press strikes of the blank's own holes; none on a laser.
     """
-    marked = [entity for entity in drawing.entities if entity.layer == "MARKS"]
+    strokes = [(entity.layer, stroke) for entity in drawing.entities for stroke in _strokes(entity)]
+    marked = [stroke for layer, stroke in strokes if layer == "MARKS"]
     if disc.cutter.kind == "punch-press":
-        struck = strike_path(disc, order)
+        travelled = strike_path(disc, order, struck)
         return CutPath(
             cut_length_mm=0.0,
             mark_length_mm=_length_mm(marked),
             rapid_length_mm=_rapid_mm(marked),
             pierce_count=0,
-            hit_count=struck.hit_count,
-            turned_rad=struck.turned_rad,
-            slid_mm=struck.slid_mm,
-            tool_change_count=struck.tool_change_count,
+            hit_count=travelled.hit_count,
+            turned_rad=travelled.turned_rad,
+            slid_mm=travelled.slid_mm,
+            tool_change_count=travelled.tool_change_count,
         )
-    cut = [entity for entity in drawing.entities if entity.layer != "MARKS"]
+    cut = [stroke for layer, stroke in strokes if layer != "MARKS"]
     return CutPath(
         cut_length_mm=_length_mm(cut),
         mark_length_mm=_length_mm(marked),
-        rapid_length_mm=_rapid_mm(list(drawing.entities)),
+        rapid_length_mm=_rapid_mm([stroke for _, stroke in strokes]),
         pierce_count=_pierces(cut),
         hit_count=0,
         turned_rad=0.0,
@@ -99,22 +96,20 @@ def path_of(disc: Disc, drawing: Drawing, order: IntArray) -> CutPath:
     )
 
 
-def _length_mm(entities: list[Entity]) -> float:
-    return float(sum(strokes.length_mm.sum() for entity in entities for strokes in _strokes(entity)))
+def _length_mm(strokes: list[_Strokes]) -> float:
+    return float(sum(part.length_mm.sum() for part in strokes))
 
 
-def _rapid_mm(entities: list[Entity]) -> float:
+def _rapid_mm(strokes: list[_Strokes]) -> float:
     """From the centre to the first start, from each end to the next start, and back to the centre."""
-    strokes = [strokes for entity in entities for strokes in _strokes(entity)]
     centre_mm = np.zeros((1, 2))
     left_mm = np.concatenate([centre_mm, *(part.end_mm for part in strokes)])
     reached_mm = np.concatenate([*(part.start_mm for part in strokes), centre_mm])
     return float(np.hypot(*(reached_mm - left_mm).T).sum())
 
 
-def _pierces(entities: list[Entity]) -> int:
+def _pierces(strokes: list[_Strokes]) -> int:
     """Starts that lie not where the cut before has ended."""
-    strokes = [strokes for entity in entities for strokes in _strokes(entity)]
     if not strokes:
         return 0
     start_mm = np.concatenate([part.start_mm for part in strokes])

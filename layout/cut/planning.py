@@ -46,7 +46,7 @@ def plan_cuts(
         part: Which disc of a set it is, such as "disc 2 of 3"; "" for one alone.
         order_number: The shop's, as it is lettered; None for none.
     """
-    order = cutting_order(disc)
+    order, struck = cutting_order(disc), struck_holes(disc)
     at_mm = struck_at_mm(disc, order)
     marking = marking_of(disc)
     cut, held_slug_count = _cut(disc, order)
@@ -74,11 +74,10 @@ def plan_cuts(
         order=order,
         at_mm=_points_as_drawn_mm(at_mm, marking.mirror),
         tool=disc.pattern.tool,
-        path=path_of(disc, drawings[0], order),
+        path=path_of(disc, drawings[0], order, struck),
         order_number=order_number,
         hole_hits=tuple(
-            ToolHits(tool=hits.tool.tool, at_mm=_points_as_drawn_mm(hits.at_mm, marking.mirror))
-            for hits in struck_holes(disc)
+            ToolHits(tool=hits.tool.tool, at_mm=_points_as_drawn_mm(hits.at_mm, marking.mirror)) for hits in struck
         ),
         not_struck=not_struck(disc.movement, disc.cutter),
     )

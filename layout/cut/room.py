@@ -2,6 +2,7 @@
 
 import math
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 import shapely
@@ -10,7 +11,6 @@ from shapely.geometry.base import BaseGeometry
 
 from layout.cut.blank import turned_mm
 from layout.documents.feature import Feature
-from layout.documents.movement import Movement
 from layout.mechanics.spacing import core_geometries
 from layout.place.disc import Disc
 
@@ -19,19 +19,17 @@ CLEAR_MM = 0.5
 _QUARTER_PIECES = 64  # of a circle's quarter: inside the true circle by under 0.02 mm at 200 mm
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class Rooms:
-    """Metal that is free for marks, at least CLEAR_MM from everything it must not touch.
+@dataclass(frozen=True, kw_only=True, eq=False)
+class FreeMetal:
+    """The metal of a disc that is free before anything is marked, at least CLEAR_MM from what no mark must touch.
+
+    Each part is worked out when it is first asked for, and kept: all that marks one disc asks for the same.
 
     Attributes:
         disc: The disc.
-        taken: What is marked already, seen from the label side.
-        mirror: −1 where the rooms are seen from the star side, else +1.
     """
 
     disc: Disc
-    taken: tuple[BaseGeometry, ...] = ()
-    mirror: int = 1
 
     @property
     def tracks_mm(self) -> tuple[float, float]:
@@ -42,21 +40,63 @@ class Rooms:
         to_mm = float(np.hypot(radius_mm[-1] + core_mm[:, 1], core_mm[:, 0]).max()) + round_mm
         return max(from_mm, 0.0), to_mm
 
+    @cached_property
     def seen(self) -> BaseGeometry:
         """Clear of the tracks' band and the keep-out rings."""
         rings = [_ring(ring.from_radius_mm, ring.to_radius_mm) for ring in self.disc.movement.keep_out]
         return self._left(_ring(*self.tracks_mm), *rings)
 
+    @cached_property
     def hidden(self) -> BaseGeometry:
         """Clear of the tracks' band; a clamp may hide it in the movement."""
-        return self._left(_ring(*self.tracks_mm))
+        return self._left(_ring(*self.tracks_mm)) if self.disc.movement.keep_out else self.seen
 
+    @cached_property
     def between(self) -> BaseGeometry:
         """Clear of openings only."""
         return self._left(_openings(self.disc))
 
+    @cached_property
+    def _metal(self) -> BaseGeometry:
+        movement = self.disc.movement
+        taken = [place for feature in movement.disc.features for place in _taken(feature)]
+        whole = _ring(movement.disc.centre_hole_mm / 2, movement.disc.outer_diameter_mm / 2)
+        return whole.difference(shapely.union_all(taken))
+
     def _left(self, *without: BaseGeometry) -> BaseGeometry:
-        free: BaseGeometry = _metal(self.disc.movement).difference(shapely.union_all(without)).buffer(-CLEAR_MM)
+        return self._metal.difference(shapely.union_all(without)).buffer(-CLEAR_MM)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Rooms:
+    """Free metal less what is marked already, as drawn; kept once worked out.
+
+    Attributes:
+        metal: The free metal.
+        taken: What is marked already, seen from the label side.
+        mirror: −1 where the rooms are seen from the star side, else +1.
+    """
+
+    metal: FreeMetal
+    taken: tuple[BaseGeometry, ...]
+    mirror: int
+
+    @cached_property
+    def seen(self) -> BaseGeometry:
+        """What is left of `FreeMetal.seen`."""
+        return self._left(self.metal.seen)
+
+    @cached_property
+    def hidden(self) -> BaseGeometry:
+        """What is left of `FreeMetal.hidden`."""
+        return self._left(self.metal.hidden)
+
+    @cached_property
+    def between(self) -> BaseGeometry:
+        """What is left of `FreeMetal.between`."""
+        return self._left(self.metal.between)
+
+    def _left(self, free: BaseGeometry) -> BaseGeometry:
         for mark in self.taken:
             free = free.difference(mark.buffer(CLEAR_MM))
         return affinity.scale(free, yfact=self.mirror, origin=(0, 0))
@@ -68,12 +108,6 @@ def _circle(radius_mm: float) -> BaseGeometry:
 
 def _ring(from_mm: float, to_mm: float) -> BaseGeometry:
     return _circle(to_mm).difference(_circle(from_mm))
-
-
-def _metal(movement: Movement) -> BaseGeometry:
-    taken = [place for feature in movement.disc.features for place in _taken(feature)]
-    whole = _ring(movement.disc.centre_hole_mm / 2, movement.disc.outer_diameter_mm / 2)
-    return whole.difference(shapely.union_all(taken))
 
 
 def _taken(feature: Feature) -> list[BaseGeometry]:

@@ -50,7 +50,7 @@ def struck_holes(disc: Disc) -> tuple[HoleHits, ...]:
     return hole_hits(disc.movement, disc.cutter, disc.turning.direction)
 
 
-def strike_path(disc: Disc, order: IntArray) -> StrikePath:
+def strike_path(disc: Disc, order: IntArray, struck: tuple[HoleHits, ...]) -> StrikePath:
     """What is struck, and what table and slide travel from hit to hit; fewer than two hits move nothing.
 
     The first tool is taken to be in the press already. Projections no tool makes are not struck.
@@ -58,8 +58,9 @@ def strike_path(disc: Disc, order: IntArray) -> StrikePath:
     Args:
         disc: The disc, for a press.
         order: Shape (n,). Projection indices in the order of the hits.
+        struck: The hits on its blank's own holes, as `struck_holes` gives them.
     """
-    groups: list[FloatArray] = [hits.at_mm for hits in struck_holes(disc)]
+    groups: list[FloatArray] = [hits.at_mm for hits in struck]
     if disc.pattern.tool and len(order):
         groups.append(disc.hits.at_mm[order])
     at_mm = np.concatenate([np.zeros((0, 2)), *groups])

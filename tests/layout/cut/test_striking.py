@@ -41,7 +41,8 @@ def test_a_demo_disc_is_struck_with_less_than_a_third_of_the_moving_by_track_and
     by_track = np.lexsort((disc.edge_angle_rad, disc.track_index))
     assert sorted(order.tolist()) == list(range(disc.projection_count))
     # measured: between a fifth and an eighth of the time where both move at once
-    assert seconds(strike_path(disc, order)) < seconds(strike_path(disc, by_track)) / 3
+    holes = struck_holes(disc)
+    assert seconds(strike_path(disc, order, holes)) < seconds(strike_path(disc, by_track, holes)) / 3
 
 
 @every_shipped
@@ -67,7 +68,7 @@ def test_the_path_is_what_table_and_slide_move() -> None:
     movement = movement_with()
     disc = disc_of(movement, [(1, 0.0), (2, 5.0), (3, 3.0)], cutter_with(tool, PRESS))
 
-    path = strike_path(disc, np.array([0, 1, 2]))
+    path = strike_path(disc, np.array([0, 1, 2]), struck_holes(disc))
 
     # 6 degrees a second: 30 on, 12 back, and a degree too far and on again; 50 to 60 to 100 mm
     assert math.degrees(path.turned_rad) == pytest.approx(30 + 12 + 2 * 1.0)
@@ -83,7 +84,7 @@ def test_holes_are_struck_first_and_what_they_move_and_change_counts() -> None:
     disc = disc_of(movement, [(1, 0.0)], cutter_with({"tools/0/edge_ahead_mm": 0}, PRESS))
 
     holes = struck_holes(disc)
-    path = strike_path(disc, hit_order(disc))
+    path = strike_path(disc, hit_order(disc), struck_holes(disc))
 
     assert [(hits.tool.tool, len(hits.at_mm)) for hits in holes] == [("R5", 2), ("R9", 1)]
     assert (path.hit_count, path.tool_change_count) == (4, 2)
@@ -96,7 +97,7 @@ def test_holes_are_struck_first_and_what_they_move_and_change_counts() -> None:
 def test_projections_without_a_tool_are_not_struck() -> None:
     disc = disc_of(movement_with({"disc/centre_hole_mm": 9, "projection/width_mm": 2}), [(1, 0.0), (2, 1.0)], PRESS)
 
-    path = strike_path(disc, hit_order(disc))
+    path = strike_path(disc, hit_order(disc), struck_holes(disc))
 
     assert (path.hit_count, path.turned_rad, path.slid_mm, path.tool_change_count) == (1, 0.0, 0.0, 0)
 
@@ -105,7 +106,7 @@ def test_projections_without_a_tool_are_not_struck() -> None:
 def test_fewer_than_two_hits_move_nothing(plucks: list[tuple[int, float]]) -> None:
     disc = disc_of(movement_with(), plucks, PRESS)
 
-    path = strike_path(disc, hit_order(disc))
+    path = strike_path(disc, hit_order(disc), struck_holes(disc))
 
     assert (path.turned_rad, path.slid_mm) == (0.0, 0.0)
 
