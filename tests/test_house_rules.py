@@ -56,6 +56,8 @@ FIELDS_WITHOUT_UNIT = {
     "Row.coefficients": "a row of a program joins columns of any unit",
     "Row.least": "as coefficients",
     "Row.most": "as coefficients",
+    **dict.fromkeys(("Over.low", "Over.high", "_Lengths.low", "_Lengths.high"), "mm along a ray, radians along a ring"),
+    **dict.fromkeys(("_Spans.from_to", "_Spans.begins", "_Spans.longest"), "in the unit of the strips: radians or mm"),
     **dict.fromkeys(("Within.ge", "Within.gt", "Within.le", "Within.lt"), "in the unit of the number they bound"),
 }
 

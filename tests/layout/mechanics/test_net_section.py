@@ -10,7 +10,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from layout.documents import Cutter, Movement
-from layout.mechanics.net_section import LINE_GRAIN_MM, RING_GRAIN_RAD, MetalLeft, metal_left
+from layout.mechanics.cut_away import rays_of, rings_of
+from layout.mechanics.most_covered import SLIVER
+from layout.mechanics.net_section import LINE_GRAIN_MM, RING_GRAIN_RAD, MetalLeft, cut_away_of, metal_left
 from layout.place.disc import Disc
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.thorough import tried
@@ -157,6 +159,18 @@ def test_of_a_hole_only_what_lies_in_the_band_counts() -> None:
     assert left.line_mm == pytest.approx(left.to_mm - left.from_mm - 4, abs=LINE_GRAIN_MM)
 
 
+def test_a_hole_that_just_reaches_into_the_band_is_missing_too() -> None:
+    # Its edge lies 0.5 inside the band. It narrows outwards, so the weakest ring is the first that is cut on both short
+    # sides of the opening on track 1.
+    middle_mm = FROM_MM - 3.5
+    left = drilled(shape="hole", radius_mm=middle_mm, width_mm=8, length_mm=8)
+
+    opening_rad, ring_mm = widest_angle(50.0)
+    hole_rad = 2 * math.acos((ring_mm**2 + middle_mm**2 - 4**2) / (2 * ring_mm * middle_mm))
+    assert left.ring_share == pytest.approx(1 - (opening_rad + hole_rad) / FULL_TURN_RAD, abs=2 * RING_GRAIN_RAD)
+    assert left.ring_radius_mm == pytest.approx(ring_mm, abs=1e-6)
+
+
 @pytest.mark.parametrize(("width_mm", "length_mm"), [(4, 9), (9, 4)])
 def test_a_slot_of_the_blank_takes_its_width_of_a_ray(width_mm: float, length_mm: float) -> None:
     left = drilled(shape="slot", radius_mm=55, width_mm=width_mm, length_mm=length_mm)
@@ -254,6 +268,24 @@ def test_no_sampled_ray_or_ring_leaves_less_and_those_told_leave_as_much(
     assert min(sampled_ring_share(whole, ring, steps) for ring in rings_mm) >= left.ring_share - edge_share
     told = [sampled_ring_share(whole, left.ring_radius_mm + step, steps) for step in (-1e-7, 1e-7)]
     assert min(told) == pytest.approx(left.ring_share, abs=edge_share)
+
+
+@settings(max_examples=tried(30), deadline=None)
+@given(movement=st.sampled_from(SHIPPED), cutter=st.sampled_from([LASER, PRESS]), plucks=TUNES)
+def test_no_stretch_covers_more_than_it_is_said_to_at_most(
+    movement: Movement, cutter: Cutter, plucks: list[tuple[int, float]]
+) -> None:
+    disc = disc_of(movement, plucks, cutter)
+    cut_away = cut_away_of(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, ())
+    assert cut_away is not None
+    for cover in (rays_of(cut_away), rings_of(cut_away)):
+        stretch, most = cover.stretches()
+        wide = stretch[:, 1] - stretch[:, 0] > SLIVER
+
+        inside = cover.over(stretch[wide]).bounds(0.0)
+
+        assert (inside <= most[wide] + 1e-9).all()
+        assert most.max() > 0
 
 
 @settings(max_examples=tried(30), deadline=None)
