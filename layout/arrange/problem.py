@@ -71,6 +71,11 @@ class Drive:
         """Shape (tracks,). The longest window of each track's teeth; 0 for a track that lifts none."""
         return np.array([max((lift.window_ns for lift in lifts), default=0) for lifts in self.lifts], dtype=np.int64)
 
+    @cached_property
+    def teeth_of_track(self) -> IntArray:
+        """Shape (tracks,). How many teeth each track lifts."""
+        return np.array([len(lifts) for lifts in self.lifts], dtype=np.int64)
+
     def load(self, track: int, before_ns: int) -> int:
         """The load of a pluck on a track this long before its release, rounded up; 0 outside the window."""
         return int(self.loads(np.array([track]), np.array([before_ns]))[0])
