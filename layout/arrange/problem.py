@@ -178,6 +178,11 @@ class Problem:
         return np.asarray(np.maximum(self.latest_ns - self.asked_ns, self.asked_ns - self.earliest_ns))
 
     @cached_property
+    def widest_ns(self) -> int:
+        """The longest window of all spots; 0 for none."""
+        return int((self.latest_ns - self.earliest_ns).max(initial=0))
+
+    @cached_property
     def company(self) -> tuple[tuple[int, ...], ...]:
         """For every track the tracks it may push or come too near to, directly or through others, itself included."""
         root = list(range(len(self.ringing_ns)))
