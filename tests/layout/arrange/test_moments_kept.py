@@ -130,7 +130,7 @@ def test_pushes_found_track_by_track_at_once_are_those_found_one_by_one() -> Non
 
 
 def test_all_pushed_at_once_come_to_the_moments_they_come_to_one_by_one(monkeypatch: pytest.MonkeyPatch) -> None:
-    cases = [(problem_of(seed), some_choice(problem_of(seed), seed)) for seed in range(500)]
+    cases = [(problem_of(seed), some_choice(problem_of(seed), seed)) for seed in range(700)]
     # From somewhere in each window on, so that pushes begin here and there.
     begins = [
         {spot: Random(spot).randint(int(problem.earliest_ns[spot]), int(problem.asked_ns[spot])) for spot in spots}
