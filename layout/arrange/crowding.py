@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.problem import Drive, Problem
-from layout.mechanics.arrays import FloatArray, IntArray, counted_out
+from layout.mechanics.arrays import FloatArray, IntArray, begins_run, counted_out
 
 _CELLS_AT_A_TIME = 1 << 19  # rows at moments looked at together: some tens of megabytes
 
@@ -30,7 +30,7 @@ def crowded_ns(problem: Problem, drive: Drive, in_time: IntArray) -> IntArray:
         in_time: Spots in the order of their asked moments; none give no moments.
     """
     asked_ns = problem.asked_ns[in_time]
-    moments_ns = asked_ns[np.diff(asked_ns, prepend=-1) != 0]
+    moments_ns = asked_ns[begins_run(asked_ns)]
     most = np.zeros(len(moments_ns))
     for lifts in _in_rows(problem, drive, in_time, moments_ns).some_at_a_time():
         moment, load = _loads(lifts, moments_ns)

@@ -11,7 +11,7 @@ import numpy as np
 
 from layout.arrange.crowding import crowded_ns
 from layout.arrange.problem import Drive, Problem
-from layout.mechanics.arrays import IntArray, counted_out
+from layout.mechanics.arrays import IntArray, begins_run, counted_out
 
 _ROWS_AT_A_TIME = 1 << 20  # spots at moments looked at together: some tens of megabytes
 
@@ -120,10 +120,9 @@ class _Lifted:
             owner = pluck[self.spots]
             order = np.lexsort((-loads, owner, moments))
             moments, loads, owner = moments[order], loads[order], owner[order]
-            first = np.ones(len(moments), dtype=np.bool_)
-            first[1:] = (np.diff(moments) != 0) | (np.diff(owner) != 0)
+            first = begins_run(moments) | begins_run(owner)
             moments, loads = moments[first], loads[first]
-        begins = np.flatnonzero(np.diff(moments, prepend=-1))
+        begins = np.flatnonzero(begins_run(moments))
         too_much = moments[begins][np.add.reduceat(loads, begins) > limit]
         firsts, lasts = np.searchsorted(self.moments, too_much), np.searchsorted(self.moments, too_much, side="right")
         for begin, end in zip(firsts.tolist(), lasts.tolist(), strict=True):
@@ -168,7 +167,7 @@ def _each_once(lifted: _Lifted) -> _Lifted:
     """The same where a window longer than a turn has a spot lifted for this turn and the next: its loads summed."""
     order = np.lexsort((lifted.spots, lifted.moments))
     moments, spots = lifted.moments[order], lifted.spots[order]
-    new = (np.diff(moments, prepend=-1) != 0) | (np.diff(spots, prepend=-1) != 0)
+    new = begins_run(moments) | begins_run(spots)
     loads = np.add.reduceat(lifted.loads[order], np.flatnonzero(new)) if len(order) else lifted.loads
     return _Lifted(moments=moments[new], spots=spots[new], loads=loads)
 

@@ -13,7 +13,7 @@ from typing import NamedTuple
 import numpy as np
 
 from layout.arrange.problem import Problem
-from layout.mechanics.arrays import BoolArray, IntArray, counted_out
+from layout.mechanics.arrays import BoolArray, IntArray, begins_run, counted_out
 
 _MOST_ROUNDS = 30  # of all pushes at once; what goes on for longer is pushed one by one
 
@@ -94,7 +94,8 @@ def pushes_of(problem: Problem, spots: Sequence[int]) -> Pushes:
     chosen = np.sort(np.array(spots, dtype=np.int64))  # spots stand by pluck
     chosen = chosen[np.argsort(problem.track[chosen], kind="stable")]
     track = problem.track[chosen]
-    begins, ends = np.diff(track, prepend=-1) != 0, np.diff(track, append=-1) != 0
+    begins = begins_run(track)
+    ends = np.append(begins[1:], begins[:1])  # the last ends as the first begins, where there are any
     first, last, before, after = chosen[begins], chosen[ends], chosen[~ends], chosen[~begins]
     inner, outer, beside_ns = _beside(problem, chosen)
     return Pushes(
