@@ -5,7 +5,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from layout.arrange.loads import overloads, piled_up
-from layout.arrange.moments_kept import Overrun, moments_kept
+from layout.arrange.moments_kept import Overrun, kept_as_asked, moments_kept
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import Problem
 
@@ -18,7 +18,7 @@ def broken_by(problem: Problem, spots: Sequence[int]) -> list[tuple[int, ...]]:
     """
     chosen = np.array(spots, dtype=np.int64)
     found = breaches(problem, spots) + overloads(problem, chosen) + piled_up(problem, chosen)
-    if not found:
+    if not found and not kept_as_asked(problem, spots):
         kept = moments_kept(problem, spots)
         if isinstance(kept, Overrun):
             found.append(kept.spots)

@@ -80,7 +80,7 @@ def best_by_time(steps: Steps, plucks: IntArray, budget: Budget) -> Best | Stuck
     """
     part = steps.of(plucks)
     best = _best(part, budget)
-    if isinstance(best, Best) and _nudges([steps.ways[spot] for spot in best.spots]):
+    if isinstance(best, Best) and _nudges(_ways_of(part, best.spots)):
         asked = _best([step.as_asked() for step in part], budget)
         # As good without a nudge is better.
         return asked if isinstance(asked, Best) and asked.worth == best.worth else best
@@ -96,6 +96,11 @@ def narrow_by_time(steps: Steps, plucks: IntArray) -> Narrow:
     """
     part = steps.of(plucks)
     return Narrow(best=_narrowed(part), bound=_relaxed(part))
+
+
+def _ways_of(part: Sequence[Step], spots: Sequence[int]) -> list[Way]:
+    way_of = {way.spot: way for step in part for _, way in step.ways}
+    return [way_of[spot] for spot in spots]
 
 
 def _nudges(ways: Sequence[Way]) -> bool:

@@ -36,7 +36,6 @@ class Columns:
         ranges = [range(int(problem.first_spot[p]), int(problem.first_spot[p + 1])) for p in self._plucks]
         self._spots = np.array([spot for one in ranges for spot in one], dtype=np.int64)
         self._column = {spot: column for column, spot in enumerate(self._spots.tolist())}
-        self._widest_ns = int((problem.latest_ns - problem.earliest_ns).max(initial=0))
         self._by_track = self._tracks_in_time()
         self._rings = [(spot, before) for spot, before in self._ringing() if before]
         self._spreads = self._spread_chords()
@@ -177,7 +176,7 @@ class Columns:
         for place, one in enumerate(spots):
             own_ns = int(problem.least_ns[one])
             for two in spots[place + 1 :]:
-                if int(problem.asked_ns[two]) - int(problem.asked_ns[one]) > own_ns + 3 * self._widest_ns:
+                if int(problem.asked_ns[two]) - int(problem.asked_ns[one]) > own_ns + 3 * problem.widest_ns:
                     break
                 apart_ns = int(problem.latest_ns[two]) - int(problem.earliest_ns[one])
                 inside = problem.earliest_ns[two] >= problem.earliest_ns[one]

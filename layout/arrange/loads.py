@@ -4,18 +4,16 @@ Between asked moments the load only grows towards the next release, so no other 
 """
 
 from collections import defaultdict
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
 
+from layout.arrange.crowding import crowded_ns
 from layout.arrange.problem import Drive, Problem
-from layout.mechanics.arrays import IntArray, counted_out
+from layout.mechanics.arrays import IntArray, begins_run, counted_out
 
 _ROWS_AT_A_TIME = 1 << 20  # spots at moments looked at together: some tens of megabytes
-
-_ROUNDED_UP = 1 + 1e-6  # far more than sums of some ten thousand floating-point numbers may be short
-_ROUNDING_NS = 4.0  # what sums of times may be short, where windows are so long that they are not exact
 
 
 def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int], list[int]]]:
@@ -33,7 +31,7 @@ def heavy_moments(problem: Problem, spots: IntArray) -> Iterator[tuple[list[int]
     if problem.drive is None:
         raise ValueError("no load limit is kept")
     in_time = _in_time(problem, spots)
-    for lifted in _lifted_at(problem, problem.drive, in_time, _crowded_ns(problem, problem.drive, in_time)):
+    for lifted in _lifted_at(problem, problem.drive, in_time, crowded_ns(problem, problem.drive, in_time)):
         yield from lifted.moments_above(problem.drive.limit, problem.pluck)
 
 
@@ -62,8 +60,7 @@ def lifted_count(problem: Problem, spots: IntArray) -> int:
     if problem.drive is None:
         return 0
     in_time = _in_time(problem, spots)
-    moments_ns = np.array(_crowded_ns(problem, problem.drive, in_time), dtype=np.int64)
-    windows = _windows(problem, problem.drive, in_time, moments_ns)
+    windows = _windows(problem, problem.drive, in_time, crowded_ns(problem, problem.drive, in_time))
     return sum(int((last - first).sum()) for _, first, last in windows)
 
 
@@ -74,7 +71,7 @@ def overloads(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
     in_time = _in_time(problem, chosen)
     return [
         tuple(spots)
-        for lifted in _lifted_at(problem, problem.drive, in_time, _crowded_ns(problem, problem.drive, in_time))
+        for lifted in _lifted_at(problem, problem.drive, in_time, crowded_ns(problem, problem.drive, in_time))
         for spots, _ in lifted.moments_above(problem.drive.limit)
     ]
 
@@ -91,7 +88,7 @@ def piled_up(problem: Problem, chosen: IntArray) -> list[tuple[int, ...]]:
 
 def loads_at(problem: Problem, drive: Drive, spots: IntArray, at_ns: int) -> tuple[list[int], list[int]]:
     """The spots whose teeth are lifted at a moment, and how much they load the disc then."""
-    [lifted] = _lifted_at(problem, drive, _in_time(problem, spots), [at_ns])
+    [lifted] = _lifted_at(problem, drive, _in_time(problem, spots), np.array([at_ns], dtype=np.int64))
     return lifted.spots.tolist(), lifted.loads.tolist()
 
 
@@ -123,10 +120,9 @@ class _Lifted:
             owner = pluck[self.spots]
             order = np.lexsort((-loads, owner, moments))
             moments, loads, owner = moments[order], loads[order], owner[order]
-            first = np.ones(len(moments), dtype=np.bool_)
-            first[1:] = (np.diff(moments) != 0) | (np.diff(owner) != 0)
+            first = begins_run(moments) | begins_run(owner)
             moments, loads = moments[first], loads[first]
-        begins = np.flatnonzero(np.diff(moments, prepend=-1))
+        begins = np.flatnonzero(begins_run(moments))
         too_much = moments[begins][np.add.reduceat(loads, begins) > limit]
         firsts, lasts = np.searchsorted(self.moments, too_much), np.searchsorted(self.moments, too_much, side="right")
         for begin, end in zip(firsts.tolist(), lasts.tolist(), strict=True):
@@ -137,16 +133,15 @@ def _in_time(problem: Problem, spots: IntArray) -> IntArray:
     return spots[np.argsort(problem.asked_ns[spots], kind="stable")]
 
 
-def _lifted_at(problem: Problem, drive: Drive, in_time: IntArray, moments_ns: Sequence[int]) -> Iterator[_Lifted]:
+def _lifted_at(problem: Problem, drive: Drive, in_time: IntArray, at_ns: IntArray) -> Iterator[_Lifted]:
     """What is lifted at these moments, rising, so many of them at a time as memory allows.
 
     Args:
         problem: The rules.
         drive: Of the problem.
         in_time: Spots in the order of their asked moments.
-        moments_ns: Rising.
+        at_ns: Rising.
     """
-    at_ns = np.array(moments_ns, dtype=np.int64)
     windows = _windows(problem, drive, in_time, at_ns)
     rows = np.cumsum(sum(last - first for _, first, last in windows))
     begin = 0
@@ -172,7 +167,7 @@ def _each_once(lifted: _Lifted) -> _Lifted:
     """The same where a window longer than a turn has a spot lifted for this turn and the next: its loads summed."""
     order = np.lexsort((lifted.spots, lifted.moments))
     moments, spots = lifted.moments[order], lifted.spots[order]
-    new = (np.diff(moments, prepend=-1) != 0) | (np.diff(spots, prepend=-1) != 0)
+    new = begins_run(moments) | begins_run(spots)
     loads = np.add.reduceat(lifted.loads[order], np.flatnonzero(new)) if len(order) else lifted.loads
     return _Lifted(moments=moments[new], spots=spots[new], loads=loads)
 
@@ -190,28 +185,3 @@ def _windows(
         ends = np.searchsorted(asked_ns, from_ns), np.searchsorted(asked_ns, from_ns + drive.widest_ns)
         found.append((from_ns, *ends))
     return found
-
-
-def _crowded_ns(problem: Problem, drive: Drive, spots: IntArray) -> list[int]:
-    """The asked moments at which the teeth of all these spots together may load the disc too much.
-
-    Reckoned in floating point and rounded up well, so that no such moment is missed.
-    """
-    if not len(spots):
-        return []
-    moments_ns = np.unique(problem.asked_ns[spots])
-    most = np.zeros(len(moments_ns))
-    for track in np.unique(problem.track[spots]).tolist():
-        asked_ns = np.sort(problem.asked_ns[spots[problem.track[spots] == track]])
-        sums_ns = np.concatenate([[0], np.cumsum(asked_ns)])
-        for lift in drive.lifts[track]:
-            # Once more for the turn after: its first plucks may be lifted while the last of this one are.
-            for from_ns in (moments_ns, moments_ns - problem.turn_ns):
-                first = np.searchsorted(asked_ns, from_ns)
-                last = np.searchsorted(asked_ns, from_ns + lift.window_ns)
-                count = last - first
-                since_ns = (sums_ns[last] - sums_ns[first] - count * from_ns).astype(np.float64)
-                left_ns = count * float(lift.window_ns) - since_ns + _ROUNDING_NS * (count > 0)
-                most += lift.load * (left_ns / lift.window_ns) + count  # every load is rounded up to a whole one
-    crowded: list[int] = moments_ns[most * _ROUNDED_UP > drive.limit].tolist()
-    return crowded

@@ -6,13 +6,16 @@ longest paths from the windows' beginnings; a path that ends past a window's end
 """
 
 from collections import defaultdict, deque
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from itertools import pairwise
+from typing import NamedTuple
 
 import numpy as np
 
 from layout.arrange.problem import Problem
+from layout.mechanics.arrays import BoolArray, IntArray, begins_run, counted_out
+
+_MOST_ROUNDS = 30  # of all pushes at once; what goes on for longer is pushed one by one
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -37,8 +40,7 @@ class Overrun:
     wraps: bool
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Push:
+class Push(NamedTuple):
     """x of `later` is at least `least_ns` after x of `earlier`; negative for "at most so long before"."""
 
     earlier: int
@@ -47,20 +49,66 @@ class Push:
     wraps: bool = False
 
 
-def pushes_of(problem: Problem, spots: Sequence[int]) -> list[Push]:
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Pushes:
+    """Every rule of time between some spots, as `Push` has it, in columns: on their tracks first.
+
+    Attributes:
+        earlier: Shape (n,).
+        later: Shape (n,).
+        least_ns: Shape (n,).
+        wraps: Shape (n,).
+    """
+
+    earlier: IntArray
+    later: IntArray
+    least_ns: IntArray
+    wraps: BoolArray
+
+    @property
+    def is_of_two(self) -> BoolArray:
+        """Which are between two spots: one alone on its track pushes itself, once a turn; no nudging changes that."""
+        return np.asarray(self.earlier != self.later)
+
+    def of(self, chosen: BoolArray) -> "Pushes":
+        """Those chosen, in their order."""
+        return Pushes(
+            earlier=self.earlier[chosen],
+            later=self.later[chosen],
+            least_ns=self.least_ns[chosen],
+            wraps=self.wraps[chosen],
+        )
+
+    def spare_ns(self, at_ns: IntArray) -> IntArray:
+        """By how much each is kept at these moments, given by spot; below 0 where it is not."""
+        return np.asarray(at_ns[self.later] - at_ns[self.earlier] - self.least_ns)
+
+    def listed(self) -> list[Push]:
+        """The same one by one."""
+        columns = (self.earlier.tolist(), self.later.tolist(), self.least_ns.tolist(), self.wraps.tolist())
+        return list(map(Push, *columns))
+
+
+def pushes_of(problem: Problem, spots: Sequence[int]) -> Pushes:
     """Every rule of time between chosen spots, no two of one pluck."""
-    on_track: dict[int, list[int]] = defaultdict(list)
-    for spot, track_index in zip(spots, problem.track[list(spots)].tolist(), strict=True):
-        on_track[track_index].append(spot)
-    least_ns = problem.least_ns.tolist()
-    pushes = []
-    for track in on_track.values():
-        track.sort()  # spots stand by pluck
-        pushes += [Push(earlier=one, later=two, least_ns=least_ns[one]) for one, two in pairwise(track)]
-        round_ns = least_ns[track[-1]] - problem.turn_ns
-        pushes.append(Push(earlier=track[-1], later=track[0], least_ns=round_ns, wraps=True))
-    pushes += _beside(problem, on_track)
-    return pushes
+    chosen = np.sort(np.array(spots, dtype=np.int64))  # spots stand by pluck
+    chosen = chosen[np.argsort(problem.track[chosen], kind="stable")]
+    track = problem.track[chosen]
+    begins = begins_run(track)
+    ends = np.append(begins[1:], begins[:1])  # the last ends as the first begins, where there are any
+    first, last, before, after = chosen[begins], chosen[ends], chosen[~ends], chosen[~begins]
+    inner, outer, beside_ns = _beside(problem, chosen)
+    return Pushes(
+        earlier=np.concatenate([before, last, inner]),
+        later=np.concatenate([after, first, outer]),
+        least_ns=np.concatenate([problem.least_ns[before], problem.least_ns[last] - problem.turn_ns, beside_ns]),
+        wraps=np.repeat([False, True, False], [len(before), len(last), len(inner)]),
+    )
+
+
+def kept_as_asked(problem: Problem, spots: Sequence[int]) -> bool:
+    """Whether every rule of time is kept at the moments asked for, so that chosen spots need not be nudged."""
+    return bool((pushes_of(problem, spots).spare_ns(problem.asked_ns) >= 0).all())
 
 
 def moments_kept(
@@ -73,15 +121,41 @@ def moments_kept(
         spots: No two of one pluck, no two asked within a forbidden stretch.
         not_before_ns: Before this a spot is not to sound, whatever its window; none where not given.
     """
-    after: dict[int, list[Push]] = defaultdict(list)
-    for push in pushes_of(problem, spots):
-        after[push.earlier].append(push)
-    at_ns = dict(zip(spots, problem.earliest_ns[list(spots)].tolist(), strict=True))
+    chosen, at_ns = list(spots), problem.earliest_ns.copy()
     if not_before_ns is not None:
-        at_ns = {spot: max(earliest_ns, not_before_ns[spot]) for spot, earliest_ns in at_ns.items()}
+        at_ns[chosen] = np.maximum(at_ns[chosen], [not_before_ns[spot] for spot in chosen])
+    pushes = pushes_of(problem, chosen)
+    pushed_ns = _pushed_at_once(problem, pushes, at_ns)
+    if pushed_ns is None:
+        return _pushed_one_by_one(problem, pushes, dict(zip(chosen, at_ns[chosen].tolist(), strict=True)))
+    return Moments(earliest_ns=dict(zip(chosen, pushed_ns[chosen].tolist(), strict=True)))
+
+
+def _pushed_at_once(problem: Problem, pushes: Pushes, at_ns: IntArray) -> IntArray | None:
+    """The earliest moments by spot, every push looked at in every round; None where that is not the quick way.
+
+    That is where something is pushed past its window, and where pushes go on from spot to spot for long.
+    """
+    at_ns = at_ns.copy()
+    for _ in range(_MOST_ROUNDS):
+        late = pushes.spare_ns(at_ns) < 0
+        if not late.any():
+            return at_ns
+        later = pushes.later[late]
+        np.maximum.at(at_ns, later, at_ns[pushes.earlier[late]] + pushes.least_ns[late])
+        if (at_ns[later] > problem.latest_ns[later]).any():
+            return None
+    return None
+
+
+def _pushed_one_by_one(problem: Problem, pushes: Pushes, at_ns: dict[int, int]) -> Moments | Overrun:
+    """The same from the moments before anything is pushed, and what is pushed past its window if anything is."""
+    after: dict[int, list[Push]] = defaultdict(list)
+    for push in pushes.listed():
+        after[push.earlier].append(push)
     pushed_by: dict[int, Push] = {}
-    waiting = deque(spots)
-    queued = set(spots)
+    waiting = deque(at_ns)
+    queued = set(at_ns)
     while waiting:
         spot = waiting.popleft()
         queued.discard(spot)
@@ -140,23 +214,31 @@ def _overrun(problem: Problem, last: int, pushed_by: dict[int, Push]) -> Overrun
     )
 
 
-def _beside(problem: Problem, on_track: dict[int, list[int]]) -> Iterator[Push]:
-    """Spots of two tracks near enough to a forbidden stretch to be nudged into it stay on their side of it."""
+def _beside(problem: Problem, chosen: IntArray) -> tuple[IntArray, IntArray, IntArray]:
+    """Spots of two tracks near enough to a forbidden stretch to be nudged into it stay on their side of it.
+
+    Given as which pushes, which is pushed, and by how much; `chosen` stands by track and pluck.
+    """
+    nothing = np.zeros(0, dtype=np.int64)
+    earlier, later, least_ns = [nothing], [nothing], [nothing]
     for pair in problem.besides:
-        inners, outers = on_track.get(pair.inner_index), on_track.get(pair.outer_index)
-        if not inners or not outers:
+        inners, outers = (
+            chosen[slice(*np.searchsorted(problem.track[chosen], (index, index + 1)))]
+            for index in (pair.inner_index, pair.outer_index)
+        )
+        if not len(inners) or not len(outers):
             continue
-        outers = sorted(outers, key=lambda spot: int(problem.asked_ns[spot]))
+        outers = outers[np.argsort(problem.asked_ns[outers], kind="stable")]
         outer_ns = problem.asked_ns[outers]
-        reach_ns = int(problem.reach_ns[inners].max() + problem.reach_ns[outers].max())
+        reach_ns = problem.reach_ns[inners].max() + problem.reach_ns[outers].max()
         for turn_ns in (-problem.turn_ns, 0, problem.turn_ns):
             inner_ns = problem.asked_ns[inners] - turn_ns
             low = np.searchsorted(outer_ns, inner_ns + pair.from_ns - reach_ns)
             high = np.searchsorted(outer_ns, inner_ns + pair.to_ns + reach_ns, side="right")
-            for inner, at_ns, first, last in zip(inners, inner_ns.tolist(), low.tolist(), high.tolist(), strict=True):
-                for place in range(first, last):
-                    if int(outer_ns[place]) - at_ns <= pair.from_ns:
-                        # x_outer + turn - x_inner <= from
-                        yield Push(earlier=outers[place], later=inner, least_ns=turn_ns - pair.from_ns)
-                    else:
-                        yield Push(earlier=inner, later=outers[place], least_ns=pair.to_ns - turn_ns)
+            run, place = counted_out(low, high - low)
+            # x_outer + turn - x_inner <= from, or at least to
+            is_before = outer_ns[place] - inner_ns[run] <= pair.from_ns
+            earlier.append(np.where(is_before, outers[place], inners[run]))
+            later.append(np.where(is_before, inners[run], outers[place]))
+            least_ns.append(np.where(is_before, turn_ns - pair.from_ns, pair.to_ns - turn_ns))
+    return np.concatenate(earlier), np.concatenate(later), np.concatenate(least_ns)

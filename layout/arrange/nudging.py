@@ -6,7 +6,7 @@ program: what a nudge costs grows with the ladder below and with the pluck's wor
 together and notes keep their order as far as they can.
 """
 
-from bisect import bisect_left
+from bisect import bisect_left, bisect_right
 from collections import defaultdict
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from itertools import pairwise
@@ -15,7 +15,7 @@ import numpy as np
 
 from layout.arrange.integer_program import Row
 from layout.arrange.linear_program import least_cost
-from layout.arrange.moments_kept import Moments, Push, moments_kept, pushes_of
+from layout.arrange.moments_kept import Moments, Push, Pushes, moments_kept, pushes_of
 from layout.arrange.problem import NS_PER_MS, Problem
 
 # What each millisecond of a nudge costs, from here on. Up to 6 ms nobody hears it (the just noticeable
@@ -49,11 +49,13 @@ def nudged(problem: Problem, spots: Sequence[int], heavy: Sequence[Sequence[int]
     """
     at_ns = dict(zip(spots, problem.asked_ns[list(spots)].tolist(), strict=True))
     pushes = pushes_of(problem, spots)
-    company = _Company(problem, spots, pushes, heavy)
+    if not heavy and not (pushes.spare_ns(problem.asked_ns) < 0).any():
+        return at_ns
+    company = _Company(problem, spots, heavy)
     blocks = _moving(problem, pushes, company)
-    if blocks:
-        for block in blocks:
-            at_ns.update(_wished(problem, block, at_ns, company))
+    pushes_on = _pushes_on([spot for block in blocks for spot in block], problem, pushes)
+    for block in blocks:
+        at_ns.update(_wished(problem, block, at_ns, company, pushes_on))
     return _put_right(problem, spots, at_ns)
 
 
@@ -73,29 +75,19 @@ def nudged_later(problem: Problem, spots: Sequence[int]) -> dict[int, int]:
 
 
 class _Company:
-    """What stands near a spot: its chord, the pushes it has part in, and the spots near in time."""
+    """What stands near a spot: its chord, the spots near in time, and what it is to be kept from for the drive."""
 
-    def __init__(
-        self, problem: Problem, spots: Sequence[int], pushes: Sequence[Push], heavy: Sequence[Sequence[int]]
-    ) -> None:
-        self.pushes: dict[int, list[Push]] = defaultdict(list)
-        for push in pushes:
-            if (
-                push.earlier != push.later
-            ):  # one pluck alone on its track pushes itself, once a turn: no matter of nudging
-                self.pushes[push.earlier].append(push)
-                self.pushes[push.later].append(push)
-        chosen = np.array(spots, dtype=np.int64)
-        self._in_time = sorted(zip(problem.asked_ns[chosen].tolist(), spots, strict=True))
+    def __init__(self, problem: Problem, spots: Sequence[int], heavy: Sequence[Sequence[int]]) -> None:
+        chosen = np.sort(np.array(spots, dtype=np.int64))
+        in_time = chosen[np.argsort(problem.asked_ns[chosen], kind="stable")]
+        self._in_time: list[int] = in_time.tolist()
+        self._asked_ns: list[int] = problem.asked_ns[in_time].tolist()
         self._far_ns = 2 * int(problem.reach_ns[chosen].max(initial=0)) + IN_ORDER_NS
-        self._chord_of = dict(zip(spots, problem.chord[problem.pluck[chosen]].tolist(), strict=True))
-        self._chords: dict[int, list[int]] = defaultdict(list)
-        for spot, chord in self._chord_of.items():
-            self._chords[chord].append(spot)
+        self._spots: list[int] = chosen.tolist()
+        self._chords: list[int] = problem.chord[problem.pluck[chosen]].tolist()  # rising, as spots by pluck do
         self.heavy: dict[int, list[tuple[int, int]]] = defaultdict(list)
         for group in heavy:
-            in_time = sorted(group, key=lambda spot: (int(problem.asked_ns[spot]), spot))
-            for pair in pairwise(in_time):
+            for pair in pairwise(sorted(group, key=lambda spot: (int(problem.asked_ns[spot]), spot))):
                 self.heavy[pair[0]].append(pair)
                 self.heavy[pair[1]].append(pair)
 
@@ -103,26 +95,33 @@ class _Company:
         """The spots that may have to move where this one does, unpushed: its chord, and what it overtakes."""
         beside = {one for pair in self.order_heard(spot, asked_ns) for one in pair}
         beside |= {one for pair in self.heavy.get(spot, ()) for one in pair}
-        return (beside | set(self._chords[self._chord_of[spot]])) - {spot}
+        return (beside | set(self._of_chord(self._chord_of(spot)))) - {spot}
 
     def spread_pairs(self, problem: Problem, block: Sequence[int]) -> Iterator[tuple[int, int]]:
         """Neighbours of a chord that is spread, the one asked first before the other."""
-        for chord in dict.fromkeys(self._chord_of[spot] for spot in block):
-            in_time = sorted(self._chords[chord], key=lambda spot: (int(problem.asked_ns[spot]), spot))
+        for chord in dict.fromkeys(map(self._chord_of, block)):
+            in_time = sorted(self._of_chord(chord), key=lambda spot: (int(problem.asked_ns[spot]), spot))
             for one, two in pairwise(in_time):
                 if problem.asked_ns[one] < problem.asked_ns[two]:
                     yield one, two
 
     def order_heard(self, spot: int, asked_ns: int) -> Iterator[tuple[int, int]]:
         """Pairs of this spot and another whose order is heard and could be lost by nudging, the earlier first."""
-        first = bisect_left(self._in_time, (asked_ns - self._far_ns + 1,))
-        last = bisect_left(self._in_time, (asked_ns + self._far_ns,))
-        for other_ns, other in self._in_time[first:last]:
+        first = bisect_left(self._asked_ns, asked_ns - self._far_ns + 1)
+        last = bisect_left(self._asked_ns, asked_ns + self._far_ns)
+        for place in range(first, last):
+            other_ns, other = self._asked_ns[place], self._in_time[place]
             if abs(other_ns - asked_ns) > ORDER_HEARD_NS:
                 yield (spot, other) if asked_ns < other_ns else (other, spot)
 
+    def _chord_of(self, spot: int) -> int:
+        return self._chords[bisect_left(self._spots, spot)]
 
-def _moving(problem: Problem, pushes: Sequence[Push], company: _Company) -> list[list[int]]:
+    def _of_chord(self, chord: int) -> list[int]:
+        return self._spots[bisect_left(self._chords, chord) : bisect_right(self._chords, chord)]
+
+
+def _moving(problem: Problem, pushes: Pushes, company: _Company) -> list[list[int]]:
     """The spots that may have to move, in blocks that do not touch.
 
     Runs of a track with a repeat too soon, and what moves with their spots; and what came too near
@@ -130,14 +129,13 @@ def _moving(problem: Problem, pushes: Sequence[Push], company: _Company) -> list
     """
     near: dict[int, list[int]] = defaultdict(list)
     found: list[int] = list(company.heavy)
-    asked_ns, reach_ns = problem.asked_ns.tolist(), problem.reach_ns.tolist()
-    for push in pushes:
-        spare_ns = asked_ns[push.later] - asked_ns[push.earlier] - push.least_ns
-        if push.earlier != push.later and spare_ns < reach_ns[push.earlier] + reach_ns[push.later]:
-            near[push.earlier].append(push.later)
-            near[push.later].append(push.earlier)
-        if spare_ns < 0 and push.earlier != push.later:
-            found += [push.earlier, push.later]
+    spare_ns, reach_ns = pushes.spare_ns(problem.asked_ns), problem.reach_ns
+    may_meet = (spare_ns < reach_ns[pushes.earlier] + reach_ns[pushes.later]) & pushes.is_of_two
+    for earlier, later in zip(pushes.earlier[may_meet].tolist(), pushes.later[may_meet].tolist(), strict=True):
+        near[earlier].append(later)
+        near[later].append(earlier)
+    too_soon = (spare_ns < 0) & pushes.is_of_two
+    found += [*pushes.earlier[too_soon].tolist(), *pushes.later[too_soon].tolist()]
     pushed = _reached(found, near)
     joined: dict[int, set[int]] = {spot: set(near[spot]) for spot in pushed}
     for spot in sorted(pushed):
@@ -153,6 +151,18 @@ def _moving(problem: Problem, pushes: Sequence[Push], company: _Company) -> list
     return blocks
 
 
+def _pushes_on(spots: Sequence[int], problem: Problem, pushes: Pushes) -> dict[int, list[Push]]:
+    """The pushes that each of these spots has part in."""
+    is_theirs = np.zeros(problem.spot_count, dtype=np.bool_)
+    is_theirs[list(spots)] = True
+    found: dict[int, list[Push]] = {spot: [] for spot in spots}
+    for push in pushes.of((is_theirs[pushes.earlier] | is_theirs[pushes.later]) & pushes.is_of_two).listed():
+        for spot in (push.earlier, push.later):
+            if spot in found:
+                found[spot].append(push)
+    return found
+
+
 def _reached(begin: Iterable[int], near: Mapping[int, Iterable[int]]) -> set[int]:
     reached, waiting = set(begin), list(begin)
     while waiting:
@@ -163,11 +173,16 @@ def _reached(begin: Iterable[int], near: Mapping[int, Iterable[int]]) -> set[int
     return reached
 
 
-def _wished(problem: Problem, block: Sequence[int], at_ns: Mapping[int, int], company: _Company) -> dict[int, int]:
+def _wished(
+    problem: Problem,
+    block: Sequence[int],
+    at_ns: Mapping[int, int],
+    company: _Company,
+    pushes_on: Mapping[int, Sequence[Push]],
+) -> dict[int, int]:
     """The moments of a block's spots at the least cost, all others standing where they are."""
     program = _Program(problem, block)
-    pushes = dict.fromkeys(push for spot in block for push in company.pushes[spot])
-    for push in pushes:
+    for push in dict.fromkeys(push for spot in block for push in pushes_on[spot]):
         program.keep_apart(push.earlier, push.later, push.least_ns, at_ns)
     heard = dict.fromkeys(pair for spot in block for pair in company.order_heard(spot, int(problem.asked_ns[spot])))
     for earlier, later in heard:

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.problem import NO_PLUCK, Problem
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import IntArray, begins_run
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -33,9 +33,9 @@ def parts_of(problem: Problem) -> Parts:
     touching = np.zeros(problem.pluck_count, dtype=np.bool_)
     touching[links] = True
     plucks = np.flatnonzero(touching)
-    root = _joined(problem.pluck_count, links)[plucks]
+    root = _joined(plucks, links)
     order = np.argsort(root, kind="stable")
-    starts = np.flatnonzero(np.diff(root[order], prepend=-1))
+    starts = np.flatnonzero(begins_run(root[order]))
     together = np.split(plucks[order], starts[1:]) if len(starts) else []
     return Parts(alone=played[~touching[played]], together=tuple(together))
 
@@ -58,16 +58,18 @@ def _links(problem: Problem) -> IntArray:
     return np.concatenate([neighbours, np.column_stack([problem.parent[extra], extra])])
 
 
-def _joined(count: int, links: IntArray) -> IntArray:
-    """Shape (count,). The least of all plucks each is linked to, directly or through others."""
-    root = list(range(count))
+def _joined(plucks: IntArray, links: IntArray) -> IntArray:
+    """Shape (plucks,). The least of all plucks each is linked to, directly or through others."""
+    root = {pluck: pluck for pluck in plucks.tolist()}
     for one, two in links.tolist():
-        low, high = sorted((_root(root, one), _root(root, two)))
+        low, high = _root(root, one), _root(root, two)
+        if low > high:
+            low, high = high, low
         root[high] = low
-    return np.array([_root(root, pluck) for pluck in range(count)], dtype=np.int64)
+    return np.array([_root(root, pluck) for pluck in root], dtype=np.int64)
 
 
-def _root(root: list[int], pluck: int) -> int:
+def _root(root: dict[int, int], pluck: int) -> int:
     while root[pluck] != pluck:
         root[pluck] = root[root[pluck]]
         pluck = root[pluck]

@@ -12,7 +12,7 @@ from functools import cached_property
 import numpy as np
 
 from layout.arrange.loads import overloads
-from layout.arrange.moments_kept import pushes_of
+from layout.arrange.moments_kept import kept_as_asked
 from layout.arrange.nudging import nudged, nudged_later
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import narrowed
@@ -64,11 +64,7 @@ class Playing:
 
     @property
     def _stands_as_asked(self) -> bool:
-        asked_ns = self.problem.asked_ns.tolist()
-        return not self.problem.spread[list(self.spots)].any() and all(
-            asked_ns[push.later] - asked_ns[push.earlier] >= push.least_ns
-            for push in pushes_of(self.problem, self.spots)
-        )
+        return not self.problem.spread[list(self.spots)].any() and kept_as_asked(self.problem, self.spots)
 
 
 def played(problem: Problem, spots: Sequence[int], *, in_haste: bool = False) -> Played:

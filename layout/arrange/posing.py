@@ -60,7 +60,8 @@ def rules_of(movement: Movement, comb: Comb, turning: Turning, spacing: Spacing,
     """The rules of a movement and the settings, in whole numbers."""
     per_rad = turning.revolution_s * NS_PER_S / FULL_TURN_RAD
     least_ns = np.ceil((spacing.least_rad - ROUNDING_RAD) * per_rad).astype(np.int64)
-    undamped = np.array([track.track not in movement.damped_tracks for track in movement.tracks])
+    damped = movement.damped_tracks
+    undamped = np.array([track.track not in damped for track in movement.tracks])
     return Rules(
         comb=comb,
         least_ns=frozen_ints(least_ns),
@@ -121,8 +122,18 @@ def most_kept(wanted: Wanted, semitones: int, rules: Rules) -> int:
     keys = np.array(sorted(rules.comb.tracks_of_key), dtype=np.int64)
     pitch = wanted.pitch + semitones
     may_move = (wanted.on_track != NO_TRACK) | (rules.octaves != "none")
-    sounds = np.isin(pitch, keys) | (may_move & np.isin(pitch % OCTAVE, keys % OCTAVE))
+    sounds = _places(keys, pitch)[1]
+    if may_move.any():
+        sounds |= may_move & np.isin(pitch % OCTAVE, keys % OCTAVE)
     return int(wanted.weight[sounds].sum())
+
+
+def _places(rising: IntArray, values: IntArray) -> tuple[IntArray, BoolArray]:
+    """Of each value its place among rising ones, and whether it is one of them; the place of another says nothing."""
+    if not len(rising):
+        return np.zeros_like(values), np.zeros(len(values), dtype=np.bool_)
+    places = np.minimum(np.searchsorted(rising, values), len(rising) - 1)
+    return places, rising[places] == values
 
 
 def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntArray, IntArray, IntArray]:
@@ -132,7 +143,7 @@ def _spots(wanted: Wanted, semitones: int, rules: Rules) -> tuple[IntArray, IntA
     found = []
     table = _Table(rules.comb)
     free = wanted.on_track == NO_TRACK
-    on_comb = np.isin(wanted.pitch + semitones, table.keys)
+    _, on_comb = _places(table.keys, wanted.pitch + semitones)
     for shift in shifts:
         # What has extra plucks stays in its octave where it can; extra plucks always do.
         moves = may_move & (wanted.parent == NO_PLUCK) & ~(wanted.fixed & on_comb)
@@ -171,9 +182,7 @@ class _Table:
 
     def tracks(self, plucks: IntArray, keys: IntArray) -> tuple[IntArray, IntArray]:
         """Every (pluck, track) of these plucks with these keys."""
-        at = np.searchsorted(self.keys, keys)
-        at[at == len(self.keys)] = 0
-        known = self.keys[at] == keys if len(self.keys) else np.zeros(len(keys), dtype=np.bool_)
+        at, known = _places(self.keys, keys)
         plucks, at = plucks[known], at[known]
         run, place = counted_out(self.start[at], self.start[at + 1] - self.start[at])
         return plucks[run], self.flat[place]

@@ -71,6 +71,11 @@ class Drive:
         """Shape (tracks,). The longest window of each track's teeth; 0 for a track that lifts none."""
         return np.array([max((lift.window_ns for lift in lifts), default=0) for lifts in self.lifts], dtype=np.int64)
 
+    @cached_property
+    def teeth_of_track(self) -> IntArray:
+        """Shape (tracks,). How many teeth each track lifts."""
+        return np.array([len(lifts) for lifts in self.lifts], dtype=np.int64)
+
     def load(self, track: int, before_ns: int) -> int:
         """The load of a pluck on a track this long before its release, rounded up; 0 outside the window."""
         return int(self.loads(np.array([track]), np.array([before_ns]))[0])
@@ -171,6 +176,11 @@ class Problem:
     def reach_ns(self) -> IntArray:
         """Shape (m,). How far each spot may be nudged, the farther way."""
         return np.asarray(np.maximum(self.latest_ns - self.asked_ns, self.asked_ns - self.earliest_ns))
+
+    @cached_property
+    def widest_ns(self) -> int:
+        """The longest window of all spots; 0 for none."""
+        return int((self.latest_ns - self.earliest_ns).max(initial=0))
 
     @cached_property
     def company(self) -> tuple[tuple[int, ...], ...]:

@@ -4,6 +4,7 @@ from bisect import bisect_left
 from collections import defaultdict
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
@@ -54,14 +55,11 @@ class Standing:
         self._spacing = spacing
         self._spots = np.array(sorted(spots), dtype=np.int64)
         self._on_track: dict[int, list[tuple[int, int]]] = defaultdict(list)
-        for spot in sorted(spots, key=lambda one: (int(problem.asked_ns[one]), int(problem.pluck[one]))):
-            self._on_track[int(problem.track[spot])].append((int(problem.asked_ns[spot]), spot))
-        self._loads: LoadsStanding | None = None
-        if problem.drive is not None:
-            self._loads = LoadsStanding(problem, problem.drive, np.array([*spots, *others], dtype=np.int64))
-            self._loads.work_out(np.array([*spots, *others], dtype=np.int64))
-            for spot in spots:
-                self._loads.put(spot)
+        in_time = self._spots[np.argsort(problem.asked_ns[self._spots], kind="stable")]
+        asked_ns, tracks = problem.asked_ns[in_time].tolist(), problem.track[in_time].tolist()
+        for track, at_ns, spot in zip(tracks, asked_ns, in_time.tolist(), strict=True):
+            self._on_track[track].append((at_ns, spot))
+        self._others = others
         self._chosen = set(spots)
         self._piled: dict[int, list[tuple[int, ...]]] = defaultdict(list)
         for pile in problem.piled:
@@ -78,6 +76,19 @@ class Standing:
             return min(found, key=lambda conflict: conflict.apart_ns)
         return self._too_heavy(spot) or near or self._alone(spot)
 
+    @cached_property
+    def _loads(self) -> LoadsStanding | None:
+        """What the chosen spots load the disc with: asked for only where nothing is nearer."""
+        problem = self._problem
+        if problem.drive is None:
+            return None
+        every = np.array([*self._spots, *self._others], dtype=np.int64)
+        loads = LoadsStanding(problem, problem.drive, every)
+        loads.work_out(every)
+        for spot in self._spots.tolist():
+            loads.put(spot)
+        return loads
+
     def _beside_it(self, spot: int) -> Iterator[Conflict]:
         problem = self._problem
         for one, two in near_pairs(problem, np.array([*self._near(spot, self._web_ns()), spot])):
@@ -93,8 +104,8 @@ class Standing:
                 )
 
     def _too_heavy(self, spot: int) -> Conflict | None:
-        track = int(self._problem.track[spot])
-        if self._loads is None or (self._loads.fits(spot) and not self._piles_up(spot)):
+        track, loads = int(self._problem.track[spot]), self._loads
+        if loads is None or (loads.fits(spot) and not self._piles_up(spot)):
             return None
         return Conflict(
             track_index=track,

@@ -26,7 +26,7 @@ from layout.arrange.playing import Playing
 from layout.arrange.problem import Problem
 from layout.arrange.spreading import with_spread_chords
 from layout.arrange.steps import Steps
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import IntArray, begins_run
 
 MOST_TOGETHER = 1_500  # plucks in one integer program; real music puts some hundreds together at most
 MOST_AT_LEISURE = 2_000  # plucks that are nudged with all care although the time is over: some tenths of a second
@@ -232,9 +232,11 @@ class Solving:
     def _best_spots(self, plucks: IntArray) -> dict[int, int]:
         """The first of the best unspread spots of each of these plucks."""
         problem = self.problem
-        spots = np.flatnonzero((problem.spread == 0) & np.isin(problem.pluck, plucks))
+        is_asked = np.zeros(problem.pluck_count, dtype=np.bool_)
+        is_asked[plucks] = True
+        spots = np.flatnonzero((problem.spread == 0) & is_asked[problem.pluck])
         spots = spots[np.lexsort((-problem.worth[spots], problem.pluck[spots]))]
-        firsts = spots[np.flatnonzero(np.diff(problem.pluck[spots], prepend=-1))]
+        firsts = spots[begins_run(problem.pluck[spots])]
         return dict(zip(problem.pluck[firsts].tolist(), firsts.tolist(), strict=True))
 
     def _part(self, steps: Steps, plucks: IntArray, budget: Budget) -> _Group | None:

@@ -1,6 +1,6 @@
 """Chords too heavy for the drive may be spread: every note of one at its own moment, the lowest first."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -8,7 +8,7 @@ import numpy as np
 from layout.arrange.broken import broken_by
 from layout.arrange.loads import heavy_moments
 from layout.arrange.problem import NO_PLUCK, NS_PER_MS, Problem
-from layout.mechanics.arrays import IntArray, frozen_ints
+from layout.mechanics.arrays import BoolArray, IntArray, frozen_ints
 
 # How far either way of its moment a chord may be spread, as far as the nudge goes. Teeth load the disc for 20 to
 # 100 ms, so less than 10 ms relieves nothing; 50 ms is the most a nudge may be. The steps are our own.
@@ -46,17 +46,27 @@ def narrowed(problem: Problem, spots: Sequence[int]) -> tuple[int, ...]:
         problem: The rules.
         spots: A choice that keeps every rule, by pluck.
     """
-    chosen = {int(problem.pluck[spot]): spot for spot in spots}
-    spread_chords = sorted({int(problem.chord[problem.pluck[spot]]) for spot in spots if problem.spread[spot]})
-    for chord in spread_chords:
-        mine = [pluck for pluck in chosen if problem.chord[pluck] == chord]
-        for spread in range(int(problem.spread[chosen[mine[0]]])):
-            tried = {pluck: _same_spot(problem, chosen[pluck], spread) for pluck in mine}
-            together = chosen | {pluck: spot for pluck, spot in tried.items() if spot is not None}
-            if None not in tried.values() and not broken_by(problem, _near(problem, together, chord)):
-                chosen = together
+    chosen = np.array(spots, dtype=np.int64)
+    chord = problem.chord[problem.pluck[chosen]]  # stays, whatever spots the plucks have
+    for one in np.unique(chord[problem.spread[chosen] > 0]).tolist():
+        mine = chord == one
+        for spread in range(int(problem.spread[chosen[mine][0]])):
+            tried = _spread_by(problem, chosen, mine, spread)
+            if tried is not None and not broken_by(problem, _near(problem, tried, mine)):
+                chosen = tried
                 break
-    return tuple(sorted(chosen.values()))
+    return tuple(chosen.tolist())
+
+
+def _spread_by(problem: Problem, chosen: IntArray, mine: BoolArray, spread: int) -> IntArray | None:
+    """A choice with some of its plucks on the same tracks, spread by this; None where one of them has no such spot."""
+    same = [_same_spot(problem, spot, spread) for spot in chosen[mine].tolist()]
+    found = [spot for spot in same if spot is not None]
+    if len(found) < len(same):
+        return None
+    tried = chosen.copy()
+    tried[mine] = found
+    return tried
 
 
 def _same_spot(problem: Problem, spot: int, spread: int) -> int | None:
@@ -68,19 +78,18 @@ def _same_spot(problem: Problem, spot: int, spread: int) -> int | None:
     return None
 
 
-def _near(problem: Problem, chosen: Mapping[int, int], chord: int) -> list[int]:
+def _near(problem: Problem, chosen: IntArray, mine: BoolArray) -> list[int]:
     """The chosen spots that a chord may disturb: on its tracks and those beside them, and those lifted with it."""
-    mine = [spot for pluck, spot in chosen.items() if problem.chord[pluck] == chord]
-    tracks = {track for spot in mine for track in problem.company[int(problem.track[spot])]}
+    is_its = np.zeros(len(problem.company), dtype=np.bool_)
+    for track in problem.track[chosen[mine]].tolist():
+        is_its[list(problem.company[track])] = True
     widest_ns = problem.drive.widest_ns if problem.drive is not None else 0
-    reach_ns = 2 * widest_ns + int((problem.latest_ns - problem.earliest_ns).max(initial=0))
-    at_ns = int(problem.asked_ns[mine[0]])
-    found = []
-    for spot in sorted(chosen.values()):
-        apart_ns = abs(int(problem.asked_ns[spot]) - at_ns)
-        if int(problem.track[spot]) in tracks or min(apart_ns, problem.turn_ns - apart_ns) <= reach_ns:
-            found.append(spot)
-    return found
+    reach_ns = 2 * widest_ns + problem.widest_ns
+    asked_ns = problem.asked_ns[chosen]
+    apart_ns = np.abs(asked_ns - asked_ns[mine][0])
+    is_near = is_its[problem.track[chosen]] | (np.minimum(apart_ns, problem.turn_ns - apart_ns) <= reach_ns)
+    near: list[int] = chosen[is_near].tolist()
+    return near
 
 
 def spread_ns(rank: IntArray, count: IntArray, step_ns: int) -> IntArray:

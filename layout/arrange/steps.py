@@ -1,5 +1,6 @@
 """The plucks of a part in time, as the dynamic program takes them: plain numbers, and what is still to come."""
 
+from collections.abc import Sequence
 from typing import NamedTuple
 
 from layout.arrange.problem import NO_PLUCK, Problem
@@ -50,7 +51,7 @@ class Steps:
 
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
-        columns = (
+        self._columns: tuple[Sequence[int], ...] = (
             range(problem.spot_count),
             problem.track.tolist(),
             problem.worth.tolist(),
@@ -61,7 +62,6 @@ class Steps:
             problem.ringing_cost.tolist(),
             problem.ringing_ns[problem.track].tolist(),
         )
-        self.ways = list(map(Way._make, zip(*columns, strict=True)))
         self._first = problem.first_spot.tolist()
         self._parent = problem.parent.tolist()
         self._must_sound = problem.must_sound.tolist()
@@ -100,7 +100,8 @@ class Steps:
         return steps[::-1]
 
     def _ways_of(self, pluck: int) -> list[Way]:
-        ways = self.ways[self._first[pluck] : self._first[pluck + 1]]
+        first, last = self._first[pluck], self._first[pluck + 1]
+        ways = list(map(Way, *(column[first:last] for column in self._columns)))
         if self._spread is None:
             return ways
         return [way for way in ways if not self._spread[way.spot]]

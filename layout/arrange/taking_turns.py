@@ -6,12 +6,16 @@ better that does not ring any more, and its star wheel has longer to settle. Mom
 
 from bisect import bisect_left, insort
 from collections import defaultdict
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 
 import numpy as np
 
-from layout.arrange.problem import Problem
+from layout.arrange.loads import heavy_moments, lifted_count
+from layout.arrange.problem import Lift, Problem
 from layout.arrange.put_down import LoadsStanding
+from layout.mechanics.arrays import IntArray, counted_out
+
+MOST_LOOKED_AT = 200_000  # spots lifted at crowded moments; a full disc of ordinary teeth has some ten thousand
 
 
 def taking_turns(problem: Problem, spots: Sequence[int], at_ns: Mapping[int, int]) -> tuple[int, ...]:
@@ -27,66 +31,70 @@ def taking_turns(problem: Problem, spots: Sequence[int], at_ns: Mapping[int, int
     """
     if problem.ringing_cost.any():
         return tuple(spots)
-    board = _Board(problem, {spot: at_ns[spot] for spot in spots})
+    board = _Board(problem, {spot: at_ns[spot] for spot in spots}, _equals(problem, spots))
     for spot in sorted(spots, key=lambda one: (at_ns[one], one)):
         board.move_to_most_rested(spot)
     return tuple(sorted(board.at_ns))
 
 
+def _equals(problem: Problem, spots: Sequence[int]) -> dict[int, list[int]]:
+    """Of each spot that has any the spots of its pluck that differ from it by their track alone.
+
+    A pluck moved beside another that is nudged could be pushed by it; tracks with others beside them are left out.
+    """
+    is_beside = np.zeros(len(problem.ringing_ns), dtype=np.bool_)
+    is_beside[[track for pair in problem.besides for track in (pair.inner_index, pair.outer_index)]] = True
+    chosen = np.array(spots, dtype=np.int64)
+    first = problem.first_spot[problem.pluck[chosen]]
+    run, other = counted_out(first, problem.first_spot[problem.pluck[chosen] + 1] - first)
+    spot = chosen[run]
+    is_equal = (other != spot) & ~is_beside[problem.track[other]]
+    is_equal &= (problem.worth[other] == problem.worth[spot]) & (problem.spread[other] == problem.spread[spot])
+    equals: dict[int, list[int]] = defaultdict(list)
+    for one, equal in zip(spot[is_equal].tolist(), other[is_equal].tolist(), strict=True):
+        equals[one].append(equal)
+    return equals
+
+
 class _Board:
     """Chosen spots on their tracks, sorted by moment."""
 
-    def __init__(self, problem: Problem, at_ns: dict[int, int]) -> None:
+    def __init__(self, problem: Problem, at_ns: dict[int, int], equals: Mapping[int, Sequence[int]]) -> None:
         self._problem = problem
         self.at_ns = at_ns
-        # A pluck moved beside another that is nudged could be pushed by it; such tracks are left as they are.
-        self._beside = {track for pair in problem.besides for track in (pair.inner_index, pair.outer_index)}
+        self._equals = equals
         # Plain lists: single numbers are read from them a good deal sooner than from arrays.
         self._track: list[int] = problem.track.tolist()
         self._least_ns: list[int] = problem.least_ns.tolist()
         self._pluck: list[int] = problem.pluck.tolist()
-        self._on_track: dict[int, list[tuple[int, ...]]] = defaultdict(list)
-        for spot, moment_ns in at_ns.items():
-            insort(self._on_track[self._track[spot]], (moment_ns, spot))
-        self._equals = {spot: self._equals_of(spot) for spot in at_ns}
-        self._loads: LoadsStanding | None = None
-        if problem.drive is not None:
-            chosen = np.array(list(at_ns), dtype=np.int64)
-            self._loads = LoadsStanding(problem, problem.drive, chosen)
-            others = [equal for equals in self._equals.values() for equal in equals]
-            self._loads.work_out(np.concatenate([chosen, np.array(others, dtype=np.int64)]))
-            for spot in at_ns:
-                self._loads.put(spot)
+        self._on_track: dict[int, list[tuple[int, int]]] = defaultdict(list)
+        for moment_ns, spot in sorted((moment_ns, spot) for spot, moment_ns in at_ns.items()):
+            self._on_track[self._track[spot]].append((moment_ns, spot))
+        self._load = _Load(problem, at_ns, [*at_ns, *(equal for others in equals.values() for equal in others)])
 
     def move_to_most_rested(self, spot: int) -> None:
-        """Put a spot's pluck on the equal spot whose track was plucked longest ago, if that is another."""
-        at_ns = self.at_ns[spot]
-        equals = self._equals[spot]
+        """Put a spot's pluck on the equal spot whose track was plucked longest ago, if that is another with room."""
+        equals = self._equals.get(spot)
         if not equals:
             return
-        row = self._on_track[self._track[spot]]
-        row.remove((at_ns, spot))
-        del self.at_ns[spot]
-        best = min([spot, *equals], key=lambda one: self._rank(one, at_ns, spot))
-        if self._loads is not None and best != spot:
-            self._loads.take(spot)
-            self._loads.put(best)
+        at_ns = self.at_ns.pop(spot)
+        self._on_track[self._track[spot]].remove((at_ns, spot))
+        by_rest = sorted([spot, *equals], key=lambda one: self._rest(one, at_ns))
+        best = next(one for one in by_rest if one == spot or self._has_room(one, at_ns, spot))
+        if best != spot:
+            self._load.move(spot, best)
         insort(self._on_track[self._track[best]], (at_ns, best))
         self.at_ns[best] = at_ns
 
-    def _equals_of(self, spot: int) -> list[int]:
-        equals = self._problem.equals(spot)
-        return [one for one in equals if one != spot and self._track[one] not in self._beside]
-
-    def _rank(self, spot: int, at_ns: int, now: int) -> tuple[bool, float, int, int]:
-        """Spots without room last, then by when the track last sounded; of unused tracks the fastest."""
+    def _rest(self, spot: int, at_ns: int) -> tuple[float, int, int]:
+        """When the track last sounded; of unused tracks the fastest comes first."""
         track = self._track[spot]
         row = self._on_track[track]
         place = bisect_left(row, (at_ns, spot))
-        last_ns = row[place - 1][0] if place else -float("inf")
-        return not (spot == now or self._has_room(spot, at_ns, now)), last_ns, self._least_ns[spot], -track
+        return row[place - 1][0] if place else -float("inf"), self._least_ns[spot], -track
 
     def _has_room(self, spot: int, at_ns: int, now: int) -> bool:
+        """Whether the spot's track and the drive have room for it instead of its equal that stands now."""
         turn_ns, least_ns, pluck = self._problem.turn_ns, self._least_ns, self._pluck
         row = self._on_track[self._track[spot]]
         if least_ns[spot] > turn_ns:
@@ -100,17 +108,48 @@ class _Board:
                 return False
             if (place and pluck[before] > pluck[spot]) or (place < len(row) and pluck[spot] > pluck[after]):
                 return False
-        return self._is_carried(spot, now)
+        return self._load.is_carried(spot, now)
 
-    def _is_carried(self, spot: int, now: int) -> bool:
+
+class _Load:
+    """What stands loads the disc with, where that may become too much: elsewhere whatever takes turns is carried."""
+
+    def __init__(self, problem: Problem, chosen: Iterable[int], candidates: Sequence[int]) -> None:
+        self._lifts: tuple[tuple[Lift, ...], ...] = ()
+        self._track = problem.track
+        self._heavy: set[int] = set()
+        if problem.drive is None:
+            return
+        self._lifts = problem.drive.lifts
+        self._heavy = _may_overload(problem, np.array(candidates, dtype=np.int64))
+        heavy = np.array(sorted(self._heavy), dtype=np.int64)
+        self._standing = LoadsStanding(problem, problem.drive, heavy)
+        self._standing.work_out(heavy)
+        for spot in chosen:
+            if spot in self._heavy:
+                self._standing.put(spot)
+
+    def move(self, spot: int, to: int) -> None:
+        """Take a spot away and put its equal down."""
+        if spot in self._heavy:
+            self._standing.take(spot)
+        if to in self._heavy:
+            self._standing.put(to)
+
+    def is_carried(self, spot: int, now: int) -> bool:
         """Whether the drive carries the spot beside all that stand, its equal that stands now taken away."""
-        problem, loads = self._problem, self._loads
-        if loads is None or problem.drive is None:
+        if spot not in self._heavy or self._lifts[self._track[spot]] == self._lifts[self._track[now]]:
             return True
-        lifts = problem.drive.lifts
-        if lifts[self._track[spot]] == lifts[self._track[now]]:
-            return True
-        loads.take(now)
-        fits = loads.fits(spot)
-        loads.put(now)
+        if now not in self._heavy:
+            return self._standing.fits(spot)
+        self._standing.take(now)
+        fits = self._standing.fits(spot)
+        self._standing.put(now)
         return fits
+
+
+def _may_overload(problem: Problem, candidates: IntArray) -> set[int]:
+    """The spots lifted where the heaviest of each pluck's would load the disc too much; all, where many are lifted."""
+    if lifted_count(problem, candidates) > MOST_LOOKED_AT:
+        return set(candidates.tolist())
+    return {spot for spots, _ in heavy_moments(problem, candidates) for spot in spots}

@@ -129,14 +129,17 @@ def _outer_voices(onset_s: FloatArray, duration_s: FloatArray, pitch: IntArray) 
 
 def _tops(onset_s: FloatArray, ends_s: FloatArray, height: IntArray) -> BoolArray:
     """Which notes have the greatest height of those that start with them or are still heard."""
-    tops = np.zeros(len(onset_s), dtype=np.bool_)
+    tops: list[bool] = []
     heard: list[tuple[int, float]] = []  # (−height, end), the greatest height first
     _, starts = np.unique(onset_s, return_index=True)
-    for start, stop in pairwise([*starts.tolist(), len(onset_s)]):
-        while heard and heard[0][1] <= onset_s[start]:
+    # Plain lists: single numbers are read from them a good deal sooner than from arrays.
+    onsets_s, heights, ends = onset_s.tolist(), height.tolist(), ends_s.tolist()
+    for start, stop in pairwise([*starts.tolist(), len(onsets_s)]):
+        while heard and heard[0][1] <= onsets_s[start]:
             heapq.heappop(heard)
-        top = max(height[start:stop].max(), -heard[0][0] if heard else -math.inf)
-        tops[start:stop] = height[start:stop] >= top
-        for place in range(start, stop):
-            heapq.heappush(heard, (-int(height[place]), float(ends_s[place])))
-    return tops
+        together = heights[start:stop]
+        top = max(*together, -heard[0][0] if heard else -math.inf)
+        tops += [one >= top for one in together]
+        for one, end_s in zip(together, ends[start:stop], strict=True):
+            heapq.heappush(heard, (-one, end_s))
+    return np.array(tops, dtype=np.bool_)

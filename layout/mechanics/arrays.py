@@ -1,4 +1,4 @@
-"""Array types shared by the stages' values, the one way to freeze an array, and places counted out."""
+"""Array types shared by the stages' values, the one way to freeze an array, and runs of places."""
 
 from collections.abc import Iterable
 
@@ -22,6 +22,13 @@ def frozen_ints(values: Iterable[int] | IntArray) -> IntArray:
     array = np.array(values if isinstance(values, np.ndarray) else list(values), dtype=np.int64)
     array.setflags(write=False)
     return array
+
+
+def begins_run(values: IntArray) -> BoolArray:
+    """Where a value differs from the one before it: for 5 5 7 the first and the third; empty for none."""
+    begins = np.ones(len(values), dtype=np.bool_)
+    begins[1:] = values[1:] != values[:-1]
+    return begins
 
 
 def counted_out(first: IntArray, count: IntArray) -> tuple[IntArray, IntArray]:

@@ -21,6 +21,7 @@ from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 MOST_TRACKS_APART = 6  # tracks; openings that reach past six neighbours are a movement no web can be kept on
 _HALVINGS = 50  # of an interval under one turn: ends below 1e-14 rad, the grain of a double
+_RING_GRAIN_MM = 1e-6  # so much farther apart than a web two rings must be before rounding does not matter
 _SCAN_STEPS = 400  # places tried over the stretch where two openings can pass each other
 
 Reason = Literal["wheel-still-stepping", "damper-not-recovered", "web"]
@@ -109,9 +110,15 @@ def webs_mm(turning: Turning, pattern: Pattern, first: FloatArray, second: Float
 
 
 def _cores(turning: Turning, pattern: Pattern, radius_mm: FloatArray, angle_rad: FloatArray) -> NDArray[np.object_]:
-    """Shape (n,). The openings' cores at radii and working-edge angles."""
+    """Shape (n,). The lines round the openings' cores at radii and working-edge angles.
+
+    All cores have one shape, so none lies within another: their lines are as far apart as they are, and sooner told.
+    """
     placed = radius_mm, angle_rad, turning.direction
-    return core_geometries(on_disc_mm(pattern.core_points_mm, *placed, pattern.strike_u_mm))
+    points_mm = on_disc_mm(pattern.core_points_mm, *placed, pattern.strike_u_mm)
+    if points_mm.shape[1] > 2:  # noqa: PLR2004 - two points make a line
+        points_mm = np.concatenate([points_mm, points_mm[:, :1]], axis=1)
+    return np.asarray(shapely.linestrings(points_mm), dtype=np.object_)
 
 
 def _between_mm(pattern: Pattern, one: NDArray[np.object_], two: NDArray[np.object_]) -> FloatArray:
@@ -154,16 +161,25 @@ def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tu
 
 
 def _near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> list[tuple[int, int]]:
-    across_mm, along_mm = _reach_mm(pattern, 1), _reach_mm(pattern, 0)
+    """Tracks between whose openings the web may become too thin at some angle: the rings that hold them are so near."""
+    inner_rim_mm, outer_rim_mm = _rims_mm(turning, pattern)
     pairs = []
-    for inner, inner_mm in enumerate(turning.radius_mm):
-        for outer in range(inner + 1, min(inner + MOST_TRACKS_APART + 1, len(turning.radius_mm))):
-            gap_mm = turning.radius_mm[outer] - inner_mm - across_mm
-            # Straight openings on a circle lean outwards by their length squared over twice the radius.
-            if gap_mm - along_mm**2 / inner_mm >= min_web_mm:
+    for inner, rim_mm in enumerate(outer_rim_mm):
+        for outer in range(inner + 1, min(inner + MOST_TRACKS_APART + 1, len(outer_rim_mm))):
+            if inner_rim_mm[outer] - rim_mm >= min_web_mm + _RING_GRAIN_MM:
                 break
             pairs.append((inner, outer))
     return pairs
+
+
+def _rims_mm(turning: Turning, pattern: Pattern) -> tuple[FloatArray, FloatArray]:
+    """Shape (tracks,) each. From the centre to the nearest and to the farthest point of a track's openings."""
+    nowhere = np.zeros(len(turning.radius_mm))
+    cores = _cores(turning, pattern, turning.radius_mm, nowhere)
+    corners_mm = shapely.get_coordinates(cores).reshape(len(cores), -1, 2)
+    nearest_mm = shapely.distance(cores, shapely.Point(0.0, 0.0)) - pattern.core_round_mm
+    farthest_mm = np.hypot(corners_mm[..., 0], corners_mm[..., 1]).max(axis=1, initial=0.0) + pattern.core_round_mm
+    return np.asarray(nearest_mm), farthest_mm
 
 
 def _reach_mm(pattern: Pattern, axis: int) -> float:

@@ -3,6 +3,7 @@ from itertools import pairwise
 import numpy as np
 import pytest
 
+from layout.arrange import loading
 from layout.arrange.comb import comb_of
 from layout.arrange.loading import greatest_load
 from layout.arrange.loads import heavy_moments, overloads
@@ -11,6 +12,7 @@ from layout.arrange.problem import Drive, Lift
 from layout.arrange.put_down import LoadsStanding
 from layout.documents import Settings
 from layout.mechanics.arrays import frozen_floats, frozen_ints
+from layout.mechanics.drive import lifts_of
 from layout.mechanics.turning import turning_of
 from tests.layout.arrange.by_hand import MS, Asked, drive_of, problem_with
 from tests.layout.arrange.random_problems import problem_of
@@ -133,6 +135,36 @@ def test_there_is_no_load_without_plucks_or_without_stated_teeth() -> None:
 
     assert greatest_load(stated, turning_of(stated), frozen_ints([]), frozen_floats([])) is None
     assert greatest_load(unstated, turning_of(unstated), *one) is None
+
+
+@pytest.mark.parametrize("pairs_at_a_time", [1, 1 << 20])
+def test_the_greatest_load_of_many_plucks_is_the_first_of_the_greatest_at_all_their_moments(
+    monkeypatch: pytest.MonkeyPatch, pairs_at_a_time: int
+) -> None:
+    monkeypatch.setattr(loading, "_PAIRS_AT_A_TIME", pairs_at_a_time)
+    movement = comb_with(heavy_comb(before_music_deg=0.01, after_music_deg=0.01))
+    turning, lifts = turning_of(movement), lifts_of(movement, turning_of(movement))
+    assert lifts is not None
+    chance = np.random.default_rng(3)
+    for _ in range(100):
+        tracks, sounds_s = chance.integers(0, 3, 60), np.round(chance.uniform(0.1, 59.9, 60), 1)
+
+        load = greatest_load(movement, turning, frozen_ints(tracks), frozen_floats(sounds_s))
+
+        best: tuple[float, float, set[int]] = (-1.0, 0.0, set())
+        for at_s in sorted(set(sounds_s.tolist())):
+            total_nmm, plucks = 0.0, set()
+            for pluck, (track, own_s) in enumerate(zip(tracks.tolist(), sounds_s.tolist(), strict=True)):
+                for lift in lifts[track]:
+                    for before_s in (own_s - at_s, own_s + turning.revolution_s - at_s):
+                        if 0 <= before_s < lift.window_s:
+                            total_nmm += lift.peak_nmm * (1 - before_s / lift.window_s)
+                            plucks.add(pluck)
+            # Alike but for the order they are added in are alike: the first of them is told.
+            best = (total_nmm, at_s, plucks) if total_nmm > best[0] * (1 + 1e-12) else best
+        assert load is not None
+        assert (load.at_s, set(load.plucks)) == best[1:]
+        assert load.peak_nmm == pytest.approx(best[0], rel=1e-12)
 
 
 def test_a_limit_of_a_movement_is_kept_in_thousandths_never_above_it() -> None:

@@ -1,5 +1,14 @@
-from layout.arrange.moments_kept import Moments, Overrun, moments_kept
+from collections import Counter
+from itertools import pairwise, product
+from random import Random
+
+import pytest
+
+from layout.arrange import moments_kept as module
+from layout.arrange.moments_kept import Moments, Overrun, Push, kept_as_asked, moments_kept, pushes_of
+from layout.arrange.problem import Problem
 from tests.layout.arrange.by_hand import MS, Asked, beside, problem_with
+from tests.layout.arrange.random_problems import problem_of
 
 
 def test_plucks_far_apart_may_sound_as_early_as_their_windows_begin() -> None:
@@ -74,3 +83,80 @@ def test_an_overrun_over_two_tracks_says_so() -> None:
 
 def test_no_plucks_are_kept() -> None:
     assert moments_kept(problem_with([]), []) == Moments(earliest_ns={})
+
+
+def some_choice(problem: Problem, seed: int) -> list[int]:
+    """A spot of most plucks, whatever it breaks."""
+    chance, spots = Random(seed), []
+    for pluck in range(problem.pluck_count):
+        mine = range(int(problem.first_spot[pluck]), int(problem.first_spot[pluck + 1]))
+        if mine and chance.random() < 0.9:
+            spots.append(chance.choice(mine))
+    return spots
+
+
+def pushes_one_by_one(problem: Problem, spots: list[int]) -> list[Push]:
+    """Straight from the text of problem.py, less the stretches that no nudge reaches."""
+    found = []
+    of_track = {track: [one for one in spots if problem.track[one] == track] for track in range(3)}
+    for row in of_track.values():
+        found += [Push(earlier=one, later=two, least_ns=int(problem.least_ns[one])) for one, two in pairwise(row)]
+        if row:
+            round_ns = int(problem.least_ns[row[-1]]) - problem.turn_ns
+            found.append(Push(earlier=row[-1], later=row[0], least_ns=round_ns, wraps=True))
+    for pair, turn_ns in product(problem.besides, (-problem.turn_ns, 0, problem.turn_ns)):
+        inners, outers = of_track[pair.inner_index], of_track[pair.outer_index]
+        for inner, outer in product(inners, outers):
+            apart_ns = int(problem.asked_ns[outer] - problem.asked_ns[inner]) + turn_ns
+            reach_ns = int(problem.reach_ns[inners].max() + problem.reach_ns[outers].max())
+            if pair.from_ns - reach_ns <= apart_ns <= pair.from_ns:
+                found.append(Push(earlier=outer, later=inner, least_ns=turn_ns - pair.from_ns))
+            elif pair.from_ns < apart_ns <= pair.to_ns + reach_ns:
+                found.append(Push(earlier=inner, later=outer, least_ns=pair.to_ns - turn_ns))
+    return found
+
+
+def test_pushes_found_track_by_track_at_once_are_those_found_one_by_one() -> None:
+    beside_each_other = 0
+    for seed in range(500):
+        problem = problem_of(seed)
+        spots = some_choice(problem, seed)
+
+        pushes = pushes_of(problem, spots).listed()
+
+        assert Counter(pushes) == Counter(pushes_one_by_one(problem, spots))
+        beside_each_other += sum(problem.track[push.earlier] != problem.track[push.later] for push in pushes)
+    assert beside_each_other >= 50
+
+
+def test_all_pushed_at_once_come_to_the_moments_they_come_to_one_by_one(monkeypatch: pytest.MonkeyPatch) -> None:
+    cases = [(problem_of(seed), some_choice(problem_of(seed), seed)) for seed in range(700)]
+    # From somewhere in each window on, so that pushes begin here and there.
+    begins = [
+        {spot: Random(spot).randint(int(problem.earliest_ns[spot]), int(problem.asked_ns[spot])) for spot in spots}
+        for problem, spots in cases
+    ]
+
+    at_once = [moments_kept(*case, begin) for case, begin in zip(cases, begins, strict=True)]
+    monkeypatch.setattr(module, "_MOST_ROUNDS", 0)
+    one_by_one = [moments_kept(*case, begin) for case, begin in zip(cases, begins, strict=True)]
+
+    assert at_once == one_by_one
+    pushed = [one.earliest_ns != begin for one, begin in zip(at_once, begins, strict=True) if isinstance(one, Moments)]
+    assert min(sum(pushed), sum(isinstance(one, Overrun) for one in at_once)) >= 50
+
+
+def test_what_is_kept_as_asked_has_moments_and_keeps_every_push_at_those_asked_for() -> None:
+    kept = 0
+    for seed in range(500):
+        problem = problem_of(seed)
+        spots = some_choice(problem, seed)
+
+        as_asked = kept_as_asked(problem, spots)
+
+        asked_ns = problem.asked_ns.tolist()
+        pushes = pushes_one_by_one(problem, spots)
+        assert as_asked == all(asked_ns[one.later] - asked_ns[one.earlier] >= one.least_ns for one in pushes)
+        assert not as_asked or isinstance(moments_kept(problem, spots), Moments)
+        kept += as_asked
+    assert 50 <= kept <= 450

@@ -177,11 +177,11 @@ def test_the_moments_lie_in_their_windows_and_keep_every_rule(problem: Problem) 
     assert sorted(at_ns) == list(solved.spots)
     for spot, moment_ns in at_ns.items():
         assert solving.problem.earliest_ns[spot] <= moment_ns <= solving.problem.latest_ns[spot]
-    for push in pushes_of(solving.problem, solved.spots):
+    for push in pushes_of(solving.problem, solved.spots).listed():
         assert at_ns[push.later] - at_ns[push.earlier] >= push.least_ns
     if all(
         problem_push_kept(solving.problem, push.earlier, push.later, push.least_ns)
-        for push in pushes_of(solving.problem, solved.spots)
+        for push in pushes_of(solving.problem, solved.spots).listed()
     ):
         assert all(moment_ns == solving.problem.asked_ns[spot] for spot, moment_ns in at_ns.items())
 

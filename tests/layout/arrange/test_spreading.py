@@ -1,11 +1,16 @@
+from dataclasses import replace
+
 import numpy as np
 
+from layout.arrange.broken import broken_by
 from layout.arrange.budget import Budget
+from layout.arrange.fitting import fitted
 from layout.arrange.problem import Problem
 from layout.arrange.solving import Impossible, Solving
-from layout.arrange.spreading import SPREAD_STEPS_MS, ranks_in_chords, spread_ns, with_spread_chords
+from layout.arrange.spreading import SPREAD_STEPS_MS, narrowed, ranks_in_chords, spread_ns, with_spread_chords
 from layout.mechanics.arrays import frozen_ints
 from tests.layout.arrange.by_hand import MS, Asked, drive_of, problem_with
+from tests.layout.arrange.random_problems import problem_of, spots_of
 
 CHORD = tuple(Asked(at_ms=1000, tracks=(track,)) for track in range(3))
 
@@ -105,3 +110,71 @@ def test_the_notes_of_one_chord_are_spread_by_one_step() -> None:
     steps = solving.problem.spread[list(solved.spots)].tolist()
     assert len(set(steps[:3])) == 1
     assert steps[3] == 0
+
+
+def narrowed_steps(problem: Problem) -> set[int]:
+    """The steps of the first chord once a choice of it spread by the widest, and all other plucks, is narrowed."""
+    problem = with_spread_chords(problem)
+    widest = np.flatnonzero(problem.spread == problem.spread.max())
+    others = np.flatnonzero(~np.isin(problem.chord[problem.pluck], problem.chord[problem.pluck[widest]]))
+    spots = narrowed(problem, sorted([*widest.tolist(), *others.tolist()]))
+    return {int(problem.spread[spot]) for spot in spots if problem.chord[problem.pluck[spot]] == 0}
+
+
+def test_a_chord_is_spread_no_wider_than_it_must_be() -> None:
+    # By 10 ms either way: 100 + 100/3, rounded up.
+    assert narrowed_steps(chord_on(limit=134)) == {1}
+    assert narrowed_steps(chord_on(limit=133)) == {2}
+
+
+def test_a_chord_stays_as_wide_as_a_pluck_beside_it_on_another_track_needs() -> None:
+    # The third at 1010 would meet a tooth released at 1012: 100 + 100 · 13/15 = 187. At 1020 it is that one's
+    # release that meets the third: 100 + 100 · 7/15 = 147.
+    fourth = Asked(at_ms=1012, tracks=(3,), nudge_ms=0)
+
+    assert narrowed_steps(chord_on(limit=150)) == {1}
+    assert narrowed_steps(chord_on(limit=150, more=(fourth,))) == {2}
+
+
+def test_a_chord_stays_as_wide_as_the_far_end_of_its_track_needs() -> None:
+    # From the first at 980 on three repeats of 100 end at 1280, which may not be nudged; from 990 on 10 ms too late.
+    run = (Asked(at_ms=1080), Asked(at_ms=1180), Asked(at_ms=1280, nudge_ms=0))
+    problem = problem_with([*CHORD, *run], least_ms=(100,) * 4, drive=drive_of((100,) * 4, 15, 150))
+
+    assert narrowed_steps(problem) == {2}
+
+
+def narrowed_one_by_one(problem: Problem, spots: tuple[int, ...]) -> tuple[int, ...]:
+    """The same, every try held against all that is chosen."""
+    of_pluck = {int(problem.pluck[spot]): spot for spot in spots}
+    for chord in sorted({int(problem.chord[pluck]) for pluck, spot in of_pluck.items() if problem.spread[spot]}):
+        mine = {pluck: spot for pluck, spot in of_pluck.items() if problem.chord[pluck] == chord}
+        for spread in range(max(int(problem.spread[spot]) for spot in mine.values())):
+            narrower = {
+                pluck: one.index
+                for pluck, spot in mine.items()
+                for one in spots_of(problem, pluck)
+                if (one.spread, one.track) == (spread, problem.track[spot])
+            }
+            together = of_pluck | narrower
+            if len(narrower) == len(mine) and not broken_by(problem, sorted(together.values())):
+                of_pluck = together
+                break
+    return tuple(sorted(of_pluck.values()))
+
+
+def test_a_spread_held_against_what_is_near_is_narrowed_as_far_as_one_held_against_all() -> None:
+    narrower, spread = 0, 0
+    for seed in range(2_000):
+        problem = problem_of(seed)
+        problem = with_spread_chords(replace(problem, must_sound=np.zeros_like(problem.must_sound)))
+        widest = np.flatnonzero(problem.spread == problem.spread.max(initial=0)).tolist()
+        spots = fitted(problem, np.arange(problem.pluck_count), widest)
+        if spots is None or not problem.spread[list(spots)].any():
+            continue
+
+        found = narrowed(problem, spots)
+
+        assert found == narrowed_one_by_one(problem, spots)
+        narrower, spread = narrower + (found != spots), spread + 1
+    assert 10 <= narrower <= spread - 10

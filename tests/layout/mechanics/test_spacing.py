@@ -2,12 +2,14 @@ import math
 
 import numpy as np
 import pytest
+import shapely
 from hypothesis import given
 from hypothesis import strategies as st
 
 from layout.documents import Cutter, Movement
+from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.projection import pattern_of
-from layout.mechanics.spacing import Spacing, spacing_of, webs_mm
+from layout.mechanics.spacing import Spacing, core_geometries, spacing_of, webs_mm
 from layout.mechanics.turning import turning_of
 from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, movement_with
 
@@ -112,6 +114,40 @@ def test_two_tracks_are_too_near_exactly_within_the_stated_angles(
     inside = any(pair.from_rad < apart_rad < pair.to_rad for pair in pairs)
     # A stretch of angle shorter than the scan's step may be passed over; its web is then within 0.5 um of the limit.
     assert inside == (web < LASER.min_web_mm) or abs(web - LASER.min_web_mm) < 5e-4
+
+
+@pytest.mark.parametrize("cutter", [LASER, PRESS], ids=lambda cutter: cutter.id)
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_the_lines_round_openings_are_exactly_as_far_apart_as_the_openings(movement: Movement, cutter: Cutter) -> None:
+    turning, pattern = turning_of(movement), pattern_of(movement, cutter)
+    chance = np.random.default_rng(7)
+    radius_mm = np.stack([turning.radius_mm[place : place + 2] for place in chance.integers(0, 6, 20_000)])
+    angle_rad = chance.uniform(-4, 4, 20_000) / radius_mm[:, 0]
+    first, second = np.column_stack([radius_mm[:, 0], 0 * angle_rad]), np.column_stack([radius_mm[:, 1], angle_rad])
+
+    webs = webs_mm(turning, pattern, first, second)
+
+    one, two = (
+        core_geometries(on_disc_mm(pattern.core_points_mm, r_mm, a_rad, turning.direction, pattern.strike_u_mm))
+        for r_mm, a_rad in (first.T, second.T)
+    )
+    assert (webs == shapely.distance(one, two) - 2 * pattern.core_round_mm).all()
+
+
+@pytest.mark.parametrize("min_web_mm", [0.3, 0.52, 0.54, 1.2, 3.0])
+@pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
+def test_tracks_not_looked_at_have_web_enough_at_every_angle(movement: Movement, min_web_mm: float) -> None:
+    turning, pattern = turning_of(movement), pattern_of(movement, LASER)
+    here = spacing_of(movement, turning, pattern, min_web_mm)
+    too_near = {(pair.inner_index, pair.outer_index) for pair in here.between}
+    angle_rad = np.linspace(-0.3, 0.3, 1001)
+
+    for inner, outer in zip(range(8), range(1, 9), strict=True):
+        first, second = (turning.radius_mm[[one]].repeat(1001) for one in (inner, outer))
+        webs = webs_mm(turning, pattern, np.column_stack([first, 0 * angle_rad]), np.column_stack([second, angle_rad]))
+
+        # A stretch shorter than the step may be passed over by the one or the other, within 0.5 um of the limit.
+        assert ((inner, outer) in too_near) == (webs.min() < min_web_mm) or abs(webs.min() - min_web_mm) < 5e-4
 
 
 def test_the_widest_web_a_cutter_may_ask_for_looks_at_six_neighbours_only() -> None:
