@@ -42,6 +42,22 @@ class Fleet:
         self._keeper = threading.Thread(target=self._keep_alive, daemon=True)
         self._keeper.start()
 
+    def __enter__(self) -> "Fleet":
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        """Leave nobody behind where a test ends before it stopped them; one may sleep, so all are killed."""
+        if self._is_over:
+            return
+        with self._lock:
+            self._is_over = True
+            for process in self._processes:
+                process.kill()
+        for process in self._processes:
+            process.wait(30)
+        self._keeper.join()
+        self._log.close()
+
     def pids(self) -> list[int]:
         """Of the workers that live."""
         with self._lock:

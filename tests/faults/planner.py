@@ -13,7 +13,7 @@ import time
 from dataclasses import replace
 from typing import Any
 
-from tests.service.fakes import FakeLayout, FakePlanner
+from tests.service.fake_planner import FakeLayout, FakePlanner
 
 
 class QuietPlanner(FakePlanner):

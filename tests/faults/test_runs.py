@@ -46,7 +46,7 @@ def test_each_pair_is_one_order_though_workers_are_killed_while_they_open_the_ru
     with ExitStack() as until_end:
         parts, environment = until_end.enter_context(shop_on(tmp_path, database_url))
         run_id = run_of(parts, chance)
-        fleet = Fleet(environment, tmp_path / "log", workers=2)
+        fleet = until_end.enter_context(Fleet(environment, tmp_path / "log", workers=2))
         mid_run = 0
         for number in range(1, KILLS + 1):
             some = number * PAIRS // (KILLS + 2)  # while it opens: not before, and not after

@@ -8,7 +8,7 @@ import random
 import signal
 import time
 from collections.abc import Iterator, Mapping
-from contextlib import contextmanager
+from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
 from service.background.queue import Queue
@@ -44,8 +44,10 @@ def test_every_order_is_planned_once_though_workers_are_killed_and_the_database_
     tmp_path: Path, database_url: str | None
 ) -> None:
     chance = random.Random(20)
-    with shop_on(tmp_path, database_url) as (parts, environment):
-        fleet = Fleet(environment, tmp_path / "log", workers=2)
+    with (
+        shop_on(tmp_path, database_url) as (parts, environment),
+        Fleet(environment, tmp_path / "log", workers=2) as fleet,
+    ):
         stream = Stream(parts, orders=ORDERS, every_s=0.2, chance=chance)
 
         for _ in range(KILLS):
@@ -67,8 +69,8 @@ def test_every_order_is_planned_once_though_the_database_is_cut_off(tmp_path: Pa
     with (
         own_server() as server,
         shop_on(tmp_path, new_database(server.url)) as (parts, environment),
+        Fleet(environment, tmp_path / "log", workers=2) as fleet,
     ):
-        fleet = Fleet(environment, tmp_path / "log", workers=2)
         stream = Stream(parts, orders=ORDERS, every_s=0.2, chance=chance)
 
         wait_for(lambda: "planning" in states(parts, list(stream.tunes)), within_s=60)
@@ -93,9 +95,9 @@ def test_a_tune_that_kills_its_worker_fails_after_its_attempts_and_others_are_pl
             queue.send(order_id)
         queue.close()
 
-        fleet = Fleet(environment, tmp_path / "log", workers=1)
-        wait_until_none_is_open(parts, [deadly, *tunes], within_s=240)
-        fleet.stop()
+        with Fleet(environment, tmp_path / "log", workers=1) as fleet:
+            wait_until_none_is_open(parts, [deadly, *tunes], within_s=240)
+            fleet.stop()
 
         seen = look(parts, deadly)
         assert (seen.state, seen.killed, seen.attempt) == ("failed", 2, 2)
@@ -111,17 +113,17 @@ def test_what_a_worker_planned_that_slept_past_its_lease_is_thrown_away(
     tmp_path: Path, database_url: str | None
 ) -> None:
     tune = tune_called("do:sleep 1.5;")
-    with shop_on(tmp_path, database_url) as (parts, environment):
+    with shop_on(tmp_path, database_url) as (parts, environment), ExitStack() as until_end:
         order_id = place(parts, tune)
         queue = Queue(parts.settings.queue_url)
         queue.send(order_id)
         queue.close()
-        sleeper = Fleet(environment, tmp_path / "sleeper", workers=1)
+        sleeper = until_end.enter_context(Fleet(environment, tmp_path / "sleeper", workers=1))
         wait_for(lambda: look(parts, order_id).state == "planning", within_s=60)
 
         (pid,) = sleeper.pids()
         os.kill(pid, signal.SIGSTOP)
-        other = Fleet(environment, tmp_path / "other", workers=1)
+        other = until_end.enter_context(Fleet(environment, tmp_path / "other", workers=1))
         wait_until_none_is_open(parts, [order_id], within_s=60)
         os.kill(pid, signal.SIGCONT)
         wait_for(lambda: "thrown away" in (tmp_path / "sleeper").read_text(), within_s=30)

@@ -9,7 +9,7 @@ from pathlib import Path
 
 import pytest
 
-from service.supervisor import Program, supervise
+from service.supervisor import KILL_AFTER_S, Program, supervise
 
 TOP = Path(__file__).parents[2]
 # Each program writes its number into a file of its own, then does what its line says.
@@ -25,13 +25,14 @@ def starts(folder: Path, name: str) -> list[int]:
     return [int(pid) for pid in path.read_text().split()] if path.exists() else []
 
 
-def supervisor(folder: Path, *lines: str) -> "subprocess.Popen[bytes]":
+def supervisor(folder: Path, *lines: str, kill_after_s: float = KILL_AFTER_S) -> "subprocess.Popen[bytes]":
     """A supervisor in a process of its own, of programs a, b, … that do what their lines say."""
     source = (
         "import sys; from pathlib import Path; from tests.service.test_supervisor import program; "
-        "from service.supervisor import supervise; "
+        f"from service import supervisor; supervisor.KILL_AFTER_S = {kill_after_s}; "
         "folder = Path(sys.argv[1]); "
-        "sys.exit(supervise([program(folder, 'abc'[n], line) for n, line in enumerate(sys.argv[2:])], stop_within_s=2))"
+        "programs = [program(folder, 'abc'[n], line) for n, line in enumerate(sys.argv[2:])]; "
+        "sys.exit(supervisor.supervise(programs, stop_within_s=2))"
     )
     return subprocess.Popen([sys.executable, "-c", source, str(folder), *lines], cwd=TOP)
 
@@ -91,15 +92,16 @@ def test_a_signal_reaches_each_program_once_and_all_end_before_the_supervisor(tm
             os.kill(pid, 0)
 
 
-def test_one_that_will_not_stop_is_killed(tmp_path: Path) -> None:
-    running = supervisor(tmp_path, "trap '' TERM; while :; do sleep 0.1; done")
+def test_one_that_will_not_stop_is_killed_after_its_time(tmp_path: Path) -> None:
+    running = supervisor(tmp_path, "trap '' TERM; while :; do sleep 0.1; done", kill_after_s=1.5)
     wait_for_starts(tmp_path, "a", 1)
     begun_s = time.monotonic()
 
     running.send_signal(signal.SIGTERM)
 
     assert running.wait(60) == 0
-    assert time.monotonic() - begun_s >= 12  # 2 s to stop, and 10 more
+    assert time.monotonic() - begun_s >= 3.5  # 2 s to stop, and 1.5 more
+    assert KILL_AFTER_S == 10  # and 20 s to stop: what compose.yaml waits before it kills all
 
 
 def test_the_first_program_starts_before_what_is_prepared_and_the_others_after(tmp_path: Path) -> None:
