@@ -4,9 +4,9 @@ import logging
 
 from hypothesis import settings
 
-from tests.thorough import tried
+from tests.thorough import MUTANTS, tried
 
-settings.register_profile("untimed", deadline=None, max_examples=tried(100))
+settings.register_profile("untimed", deadline=None, max_examples=tried(100), derandomize=MUTANTS)
 settings.load_profile("untimed")
 
 # ezdxf's remarks about damaged files quote their bytes, half letters among them, which no report can carry from
