@@ -8,13 +8,13 @@ from pathlib import Path
 import pytest
 from hypothesis import settings
 
-from tests.thorough import tried
+from tests.thorough import MUTANTS, tried
 
 HERE = Path(__file__).parent
 MOSTLY_WAITING = (HERE / "faults", HERE / "service", HERE / "service" / "background")  # tests of whole processes
 
 # No test fails for being slow on a busy machine.
-settings.register_profile("untimed", deadline=None, max_examples=tried(100))
+settings.register_profile("untimed", deadline=None, max_examples=tried(100), derandomize=MUTANTS)
 settings.load_profile("untimed")
 
 # ezdxf's remarks about damaged files quote their bytes, half letters among them, which no report can carry from

@@ -1,6 +1,7 @@
-"""Whether the long tests are asked for: TESTS=thorough in the environment.
+"""How much is tried: TESTS=thorough in the environment asks for the long tests, TESTS=mutants for few examples.
 
-What is tried by default is a small part of the same; each place says which.
+What is tried by default is a small part of the same; each place says which. Mutants are tried with the same few
+examples each, so that a mutant caught once is always caught.
 """
 
 import os
@@ -12,10 +13,13 @@ import pytest
 from layout.documents import Cutter, Movement
 
 THOROUGH = os.environ.get("TESTS") == "thorough"
+MUTANTS = os.environ.get("TESTS") == "mutants"
 
 
 def tried(examples: int) -> int:
-    """How many examples of so many hypothesis tries by default: a third, and ten at least."""
+    """How many examples of so many hypothesis tries by default: a third, and ten at least; ten on mutants."""
+    if MUTANTS:
+        return min(examples, 10)
     return examples if THOROUGH else min(examples, max(examples // 3, 10))
 
 
