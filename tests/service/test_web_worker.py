@@ -4,6 +4,7 @@ import http.client
 import json
 import signal
 import socket
+import statistics
 import subprocess
 import sys
 import time
@@ -15,7 +16,7 @@ from typing import Any
 import pytest
 
 from service.api.problems import PROBLEMS
-from service.web_worker import address_of
+from service.web_worker import COME_AGAIN_S, LEAVE_TO_OTHERS_S, TURN_S, address_of
 from tests.service.quick_web import LONG_BYTES, QUICK, SLOW_S
 
 SOON_S = 1.0
@@ -123,6 +124,44 @@ def test_health_is_told_while_every_thread_works_and_more_wait(quick: Quick) -> 
 
         assert quick.health_took_s() < SOON_S
         assert [answered(one) for one in working] == [(200, b"at last")] * (2 * THREADS)
+
+
+def test_who_finds_too_many_waiting_is_told_at_once_to_come_again(quick: Quick) -> None:
+    with ExitStack() as kept:
+        taken = [kept.enter_context(quick.send(SLOW)) for _ in range(THREADS + QUICK.waiting_requests)]
+        time.sleep(0.5)
+        begun_s = time.monotonic()
+        one_more = kept.enter_context(quick.send(SLOW))
+        answer = http.client.HTTPResponse(one_more)
+        answer.begin()
+        told = json.loads(answer.read())
+
+        assert time.monotonic() - begun_s < SOON_S
+        assert (answer.status, answer.headers["Retry-After"]) == (503, str(COME_AGAIN_S))
+        kind = PROBLEMS["service-busy"]
+        assert (told["type"], told["title"], told["try_again"]) == (kind.type, kind.title, True)
+        assert told["detail"] == "8 requests wait for a thread, and no more than 8 may"
+        assert quick.health_took_s() < SOON_S
+        assert [answered(one) for one in taken] == [(200, b"at last")] * len(taken)
+    assert answered(quick.send(post("/length", 3, b"abc"))) == (200, b"3")
+
+
+def test_while_every_thread_works_who_asks_how_it_is_waits_no_longer_than_for_another_process(quick: Quick) -> None:
+    with ExitStack() as kept:
+        for _ in range(THREADS):
+            kept.enter_context(quick.send(SLOW))
+        time.sleep(0.2)
+
+        took_s = []
+        for _ in range(5):
+            time.sleep(0.02)  # till the leave of the one before is over, which would wake the loop
+            took_s.append(quick.health_took_s())
+
+    assert statistics.median(took_s) < 3 * LEAVE_TO_OTHERS_S  # and not until something else is due, 0.25 s
+
+
+def test_threads_that_compute_take_short_turns(quick: Quick) -> None:
+    assert answered(quick.send(b"GET /turn HTTP/1.1\r\nHost: a\r\n\r\n")) == (200, str(TURN_S).encode())
 
 
 def test_a_body_that_stalls_ends_with_408_after_the_time_stated(quick: Quick) -> None:
