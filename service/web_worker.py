@@ -39,17 +39,19 @@ PIECE_BYTES = 64 * 1024  # taken from a connection at a time
 LEAVE_TO_OTHERS_S = 0.05
 MOST_TAKEN_AT_ONCE = 64  # connections
 LOOK_EVERY_S = 0.25  # at whose time is up
-# s; that a thread computes before another has its turn. By Python's own 5 ms who waits behind 16 threads that compute
-# waits 80 ms for a turn, and a request needs several, health too. It costs 4 % of a layout where eight compute at a
-# time, and nothing where two do, measured.
-TURN_S = 0.0005
-COME_AGAIN_S = 2  # s; in which a full process answers most of what waits
 STOP_LINGER_S = 2.0  # s; that a process told to stop waits for the rest of a request
 IPV6_NETWORK_BITS = 64  # what one customer has at least (RFC 6177)
 ANSWER_FAULTS = (InvalidResponseHeader, InvalidResponseHeaderName)  # of the app's own answer
 FAILED = "the service failed; its log holds the trace"
 NO_MORE_FILES = (errno.EMFILE, errno.ENFILE)
 NOBODY_THERE = (errno.EAGAIN, errno.EWOULDBLOCK, errno.ECONNABORTED)
+# s; that a thread computes before another has its turn. By Python's own 5 ms who waits behind 16 threads that compute
+# waits 80 ms for a turn, and a request needs several, health too. It costs 4 % of a layout where eight compute at a
+# time, and nothing where two do, measured.
+TURN_S = 0.0005
+LEAVE_SHARE = 0.5  # of the connections a process may have, beyond which who sent nothing is let go without a word
+TOO_MANY_UNFINISHED = "too many requests are on their way at a time"
+COME_AGAIN_S = 2  # s; in which a full process answers most of what waits
 
 log = logging.getLogger("discwright")
 
@@ -192,11 +194,12 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         self._gathering[connection] = None
         self._of_address[connection.address] += 1
         self.poller.register(connection.sock, selectors.EVENT_READ, partial(self._gather, connection))
+        self._gather(connection)  # most send their request with the connection
         return True
 
     # Requests on their way.
 
-    def _gather(self, connection: Connection, _: Any) -> None:
+    def _gather(self, connection: Connection, _: Any = None) -> None:
         if connection not in self._gathering:
             return  # let go in this very turn
         try:
@@ -336,7 +339,11 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         """Let go of the request that has been on its way longest: of an address, or of any where that is empty."""
         for connection in self._gathering:
             if address in ("", connection.address):
-                self._refuse(connection, self._told_of(connection))
+                told = self._told_of(connection)
+                if not told and self.nr_conns < LEAVE_SHARE * self.worker_connections:
+                    # What it sends may be on its way. Where many are let go, each would hold a place while it leaves.
+                    told = refusal("service-busy", TOO_MANY_UNFINISHED, retry_after_s=COME_AGAIN_S)
+                self._refuse(connection, told)
                 return
 
     def _look_at_times(self) -> None:

@@ -19,7 +19,7 @@ QUICK = replace(
     body_bytes_per_s=1000,
     gathered_bytes=10_000,
     linger_s=1,
-    connections=60,
+    connections=120,
     connections_per_address=50,
     waiting_requests=8,
 )

@@ -63,6 +63,14 @@ def problem(connection: socket.socket) -> dict[str, Any]:
     return told
 
 
+def come_again(connection: socket.socket) -> tuple[int, str | None, dict[str, Any]]:
+    """Status, Retry-After and problem of an answer that refuses."""
+    with closing(http.client.HTTPResponse(connection)) as answer:
+        answer.begin()
+        told: dict[str, Any] = json.loads(answer.read())
+        return answer.status, answer.headers["Retry-After"], told
+
+
 def post(path: str, length: int, body: bytes) -> bytes:
     return b"POST %s HTTP/1.1\r\nHost: a\r\nContent-Length: %d\r\n\r\n%s" % (path.encode(), length, body)
 
@@ -132,12 +140,10 @@ def test_who_finds_too_many_waiting_is_told_at_once_to_come_again(quick: Quick) 
         time.sleep(0.5)
         begun_s = time.monotonic()
         one_more = kept.enter_context(quick.send(SLOW))
-        answer = http.client.HTTPResponse(one_more)
-        answer.begin()
-        told = json.loads(answer.read())
+        status, retry_after, told = come_again(one_more)
 
         assert time.monotonic() - begun_s < SOON_S
-        assert (answer.status, answer.headers["Retry-After"]) == (503, str(COME_AGAIN_S))
+        assert (status, retry_after) == (503, str(COME_AGAIN_S))
         kind = PROBLEMS["service-busy"]
         assert (told["type"], told["title"], told["try_again"]) == (kind.type, kind.title, True)
         assert told["detail"] == "8 requests wait for a thread, and no more than 8 may"
@@ -283,6 +289,28 @@ def test_of_an_address_with_too_many_connections_the_oldest_is_let_go(quick: Qui
         assert time.monotonic() - begun_s < QUICK.body_s  # its own time was not up
         newest.sendall(post("/length", 3, b"abc"))
         assert answered(newest) == (200, b"3")
+
+
+def test_who_is_let_go_before_anything_came_is_told_to_come_again(quick: Quick) -> None:
+    with ExitStack() as kept:
+        oldest = kept.enter_context(quick.connect())
+        for _ in range(QUICK.connections_per_address):
+            kept.enter_context(quick.connect())
+        time.sleep(0.5)  # till all are taken
+
+        oldest.sendall(post("/length", 3, b"abc"))  # as it was about to
+        status, retry_after, told = come_again(oldest)
+        assert (status, retry_after, told["type"]) == (503, str(COME_AGAIN_S), "/problems/service-busy")
+
+
+def test_of_many_who_send_nothing_those_let_go_hold_no_place(quick: Quick) -> None:
+    with ExitStack() as kept:
+        silent = [kept.enter_context(quick.connect()) for _ in range(4 * QUICK.connections)]
+        begun_s = time.monotonic()
+
+        assert quick.health_took_s() < SOON_S
+        assert silent[0].recv(1) in (b"", b"H")
+        assert time.monotonic() - begun_s < QUICK.linger_s + SOON_S
 
 
 def test_when_told_to_stop_it_answers_what_it_has_and_ends(tmp_path: Path) -> None:
