@@ -111,6 +111,10 @@ class Limits:
         100, "connections", "most of them of one address whose requests are not whole; the oldest is let go for a new"
     )
 
+    waiting_requests: int = limit(
+        64, "requests", "of one web process that wait for a thread; more are refused, as they would wait for seconds"
+    )
+
     def told(self) -> tuple[Limit, ...]:
         """Every limit: of reading a tune, of sheet jobs, these, and of hooks, in the order of the fields."""
         # The computation takes a second to import, and is needed here only for what it limits itself.

@@ -29,12 +29,13 @@ def refusal_of(fault: ParseException) -> bytes:
     return refusal(name, shortened(str(fault) or type(fault).__name__, MOST_CHARACTERS))
 
 
-def refusal(name: str, detail: str) -> bytes:
+def refusal(name: str, detail: str, *, retry_after_s: int | None = None) -> bytes:
     """A whole answer, head and body, that tells a problem and ends the connection.
 
     Args:
         name: The kind, a key of PROBLEMS.
         detail: What went wrong this time.
+        retry_after_s: After how many seconds the same may do better; None where no time helps.
     """
     kind = PROBLEMS[name]
     request_id = f"req_{secrets.token_hex(RANDOM_BYTES)}"
@@ -53,6 +54,7 @@ def refusal(name: str, detail: str) -> bytes:
         f"Content-Type: {PROBLEM_MEDIA_TYPE}",
         f"Content-Length: {len(body)}",
         f"{FIELD}: {request_id}",
+        *(() if retry_after_s is None else (f"Retry-After: {retry_after_s}",)),
         "Cache-Control: no-store",
         "X-Content-Type-Options: nosniff",
         f"Content-Security-Policy: {NOTHING_LOADS}",

@@ -5,7 +5,14 @@ from service.api.describing import Operation
 from service.api.own_pages import SAFE_METHODS
 from service.api.problems import PROBLEMS
 
-EVERYWHERE = ("request-malformed", "request-too-slow", "address-too-long", "head-too-large", "internal-error")
+EVERYWHERE = (
+    "request-malformed",
+    "request-too-slow",
+    "address-too-long",
+    "head-too-large",
+    "service-busy",
+    "internal-error",
+)
 OF_THE_STORE = ("store-busy", "store-full")
 OF_KEYS = ("key-missing", "key-refused")
 

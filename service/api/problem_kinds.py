@@ -221,6 +221,14 @@ KINDS = (
         try_again=True,
     ),
     ProblemKind(
+        name="service-busy",
+        status=503,
+        title="The service has more to do than it can",
+        what_to_do="Nothing was done. Wait the seconds that Retry-After says, then send the same request again, with "
+        "the same Idempotency-Key.",
+        try_again=True,
+    ),
+    ProblemKind(
         name="internal-error",
         status=500,
         title="The service failed",

@@ -1,5 +1,6 @@
 """A small service in a hurry, for gunicorn to run: the limits of slow clients made short. Its configuration too."""
 
+import sys
 import time
 from dataclasses import replace
 
@@ -18,8 +19,9 @@ QUICK = replace(
     body_bytes_per_s=1000,
     gathered_bytes=10_000,
     linger_s=1,
-    connections=60,
+    connections=120,
     connections_per_address=50,
+    waiting_requests=8,
 )
 SLOW_S = 1.5
 LONG_BYTES = 300_000  # more than the buffers of a connection on loopback and `gathered_bytes`
@@ -50,6 +52,10 @@ def create_app() -> Flask:
     @app.post("/length")
     def length() -> Response:
         return Response(str(len(request.get_data())))
+
+    @app.get("/turn")
+    def turn() -> Response:
+        return Response(str(sys.getswitchinterval()))
 
     @app.get("/slow")
     def slow() -> Response:

@@ -4,6 +4,7 @@ import http.client
 import json
 import signal
 import socket
+import statistics
 import subprocess
 import sys
 import time
@@ -17,7 +18,14 @@ from gunicorn.config import Config
 
 from service import web_worker
 from service.api.problems import PROBLEMS
-from service.web_worker import SIGN_OF_LIFE_EVERY_S, GatheringWorker, address_of
+from service.web_worker import (
+    COME_AGAIN_S,
+    LEAVE_TO_OTHERS_S,
+    SIGN_OF_LIFE_EVERY_S,
+    TURN_S,
+    GatheringWorker,
+    address_of,
+)
 from tests.service.quick_web import LONG_BYTES, QUICK, SLOW_S
 
 SOON_S = 1.0
@@ -62,6 +70,14 @@ def problem(connection: socket.socket) -> dict[str, Any]:
     assert told["status"] == status
     assert told["request_id"].startswith("req_")
     return told
+
+
+def come_again(connection: socket.socket) -> tuple[int, str | None, dict[str, Any]]:
+    """Status, Retry-After and problem of an answer that refuses."""
+    with closing(http.client.HTTPResponse(connection)) as answer:
+        answer.begin()
+        told: dict[str, Any] = json.loads(answer.read())
+        return answer.status, answer.headers["Retry-After"], told
 
 
 def post(path: str, length: int, body: bytes) -> bytes:
@@ -125,6 +141,42 @@ def test_health_is_told_while_every_thread_works_and_more_wait(quick: Quick) -> 
 
         assert quick.health_took_s() < SOON_S
         assert [answered(one) for one in working] == [(200, b"at last")] * (2 * THREADS)
+
+
+def test_who_finds_too_many_waiting_is_told_at_once_to_come_again(quick: Quick) -> None:
+    with ExitStack() as kept:
+        taken = [kept.enter_context(quick.send(SLOW)) for _ in range(THREADS + QUICK.waiting_requests)]
+        time.sleep(0.5)
+        begun_s = time.monotonic()
+        one_more = kept.enter_context(quick.send(SLOW))
+        status, retry_after, told = come_again(one_more)
+
+        assert time.monotonic() - begun_s < SOON_S
+        assert (status, retry_after) == (503, str(COME_AGAIN_S))
+        kind = PROBLEMS["service-busy"]
+        assert (told["type"], told["title"], told["try_again"]) == (kind.type, kind.title, True)
+        assert told["detail"] == "8 requests wait for a thread, and no more than 8 may"
+        assert quick.health_took_s() < SOON_S
+        assert [answered(one) for one in taken] == [(200, b"at last")] * len(taken)
+    assert answered(quick.send(post("/length", 3, b"abc"))) == (200, b"3")
+
+
+def test_while_every_thread_works_who_asks_how_it_is_waits_no_longer_than_for_another_process(quick: Quick) -> None:
+    with ExitStack() as kept:
+        for _ in range(THREADS):
+            kept.enter_context(quick.send(SLOW))
+        time.sleep(0.2)
+
+        took_s = []
+        for _ in range(5):
+            time.sleep(0.02)  # till the leave of the one before is over, which would wake the loop
+            took_s.append(quick.health_took_s())
+
+    assert statistics.median(took_s) < 3 * LEAVE_TO_OTHERS_S  # and not until something else is due, 0.25 s
+
+
+def test_threads_that_compute_take_short_turns(quick: Quick) -> None:
+    assert answered(quick.send(b"GET /turn HTTP/1.1\r\nHost: a\r\n\r\n")) == (200, str(TURN_S).encode())
 
 
 def test_a_body_that_stalls_ends_with_408_after_the_time_stated(quick: Quick) -> None:
@@ -246,6 +298,28 @@ def test_of_an_address_with_too_many_connections_the_oldest_is_let_go(quick: Qui
         assert time.monotonic() - begun_s < QUICK.body_s  # its own time was not up
         newest.sendall(post("/length", 3, b"abc"))
         assert answered(newest) == (200, b"3")
+
+
+def test_who_is_let_go_before_anything_came_is_told_to_come_again(quick: Quick) -> None:
+    with ExitStack() as kept:
+        oldest = kept.enter_context(quick.connect())
+        for _ in range(QUICK.connections_per_address):
+            kept.enter_context(quick.connect())
+        time.sleep(0.5)  # till all are taken
+
+        oldest.sendall(post("/length", 3, b"abc"))  # as it was about to
+        status, retry_after, told = come_again(oldest)
+        assert (status, retry_after, told["type"]) == (503, str(COME_AGAIN_S), "/problems/service-busy")
+
+
+def test_of_many_who_send_nothing_those_let_go_hold_no_place(quick: Quick) -> None:
+    with ExitStack() as kept:
+        silent = [kept.enter_context(quick.connect()) for _ in range(4 * QUICK.connections)]
+        begun_s = time.monotonic()
+
+        assert quick.health_took_s() < SOON_S
+        assert silent[0].recv(1) in (b"", b"H")
+        assert time.monotonic() - begun_s < QUICK.linger_s + SOON_S
 
 
 def test_when_told_to_stop_it_answers_what_it_has_and_ends(tmp_path: Path) -> None:

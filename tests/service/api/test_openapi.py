@@ -132,8 +132,10 @@ def test_every_problem_says_whether_to_try_again(document: Any) -> None:
 
     assert {"type", "title", "status", "detail", "instance", "request_id", "try_again"} == set(problem["required"])
     busy = document["paths"]["/v1/orders"]["post"]["responses"]["503"]
-    assert busy["description"].startswith("`store-busy`: The service cannot reach what it keeps its data in; ")
-    assert "the same request may do better later." in busy["description"]
+    assert busy["description"] == (
+        "`service-busy`: The service has more to do than it can; the same request may do better later. "
+        "`store-busy`: The service cannot reach what it keeps its data in; the same request may do better later."
+    )
     assert busy["headers"]["Retry-After"] == {"$ref": "#/components/headers/Retry-After"}
 
 
