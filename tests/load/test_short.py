@@ -13,6 +13,7 @@ from tests.load.watching import Held, held
 PAGE = next(kind for kind in KINDS if kind.name == "page")
 TAKEN = 40  # at a time: more than both processes have threads, fewer than one of them lets wait
 TOO_MANY = 200  # more than both take and let wait, 2 times 16 + 64; no more than one has places for, while they leave
+BEGUN_LATE = 8  # threads of pools that begin with their first work, whichever process gets it; a leak is of hundreds
 
 
 async def course_of(service: Service) -> tuple[dict[str, list[Told]], Held, Held]:
@@ -43,7 +44,7 @@ def test_what_is_too_much_is_refused_without_a_fault_and_leaves_nothing_open(tmp
     assert 0 < refused.pop("too many") < TOO_MANY
     assert set(refused.values()) == {0}
     assert before.pids == after.pids
-    assert after.threads <= before.threads
+    assert after.threads <= before.threads + BEGUN_LATE
     assert after.handles <= before.handles
     assert after.sockets <= before.sockets
     assert after.connections <= before.connections
