@@ -14,7 +14,7 @@ from layout.check.margin import GRAIN_MM, Condition, judged, told_worth
 from layout.documents.drive import Drive, Winding
 from layout.documents.movement import Movement
 from layout.mechanics.starting import AT_SPEED_RATIO, Starting, starting_of
-from layout.mechanics.torque import TurnTorque, torque_over_turn
+from layout.mechanics.torque import TurnTorque
 from layout.mechanics.winding import (
     DiscLoad,
     WindingRun,
@@ -91,7 +91,7 @@ def drive_carries_the_teeth(disc: Disc) -> list[Finding]:
     such a disc may stop on the chord all the same, and whoever wants it can have it despite findings.
     """
     drive = disc.movement.drive
-    torque = _torque(disc)
+    torque = disc.torque
     if drive is None or drive.torque_limit_nmm is None or torque is None:
         return []
     limit_nmm = drive.torque_limit_nmm
@@ -114,11 +114,6 @@ def drive_carries_the_teeth(disc: Disc) -> list[Finding]:
         remedy="Leave a note of this chord out, spread the chord, or arrange with load_limit keep.",
     )
     return judged(condition, disc.movement)
-
-
-def _torque(disc: Disc) -> TurnTorque | None:
-    sounds_s = disc.turning.sounds_s(disc.edge_angle_rad, disc.track_index)
-    return torque_over_turn(disc.movement, disc.turning, disc.track_index, sounds_s)
 
 
 def _load_unsure_nmm(disc: Disc, torque: TurnTorque) -> tuple[float, float]:
@@ -269,7 +264,7 @@ def _wound(disc: Disc) -> tuple[WoundDrive, DiscLoad] | None:
     drive = disc.movement.drive
     if drive is None or drive.winding is None:
         return None
-    torque = _torque(disc)
+    torque = disc.torque
     load = DiscLoad(
         peak_nmm=0.0 if torque is None else torque.peak_nmm, mean_nmm=0.0 if torque is None else torque.mean_nmm
     )
@@ -279,7 +274,7 @@ def _wound(disc: Disc) -> tuple[WoundDrive, DiscLoad] | None:
 def _at_most(disc: Disc) -> str:
     winding = disc.movement.drive.winding if disc.movement.drive is not None else None
     known = winding is not None and winding.efficiency is not None and winding.friction_nmm is not None
-    return "" if known and _torque(disc) is not None else "at most "
+    return "" if known and disc.torque is not None else "at most "
 
 
 def _winding_unsure(

@@ -15,12 +15,18 @@ import numpy as np
 import shapely
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, told_worth
-from layout.check.worth import WIDTH, edge_unsure_mm, feature_unsure_mm, most_web_unsure_mm, web_unsure_mm
+from layout.check.margin import GRAIN_MM, not_surely_held, told_worth
+from layout.check.worth import (
+    WIDTH,
+    edge_unsure_mm,
+    edges_unsure_mm,
+    feature_unsure_mm,
+    most_web_unsure_mm,
+    web_unsure_mm,
+)
 from layout.documents.cutter import WIDEST_WEB_MM
 from layout.mechanics.arrays import FloatArray
 from layout.mechanics.blank import feature_core_mm, row_cores_mm
-from layout.mechanics.openings import radial_reach_mm
 from layout.place.disc import Disc
 
 Kind = Literal["hole", "web", "edge", "slit"]
@@ -65,7 +71,7 @@ def features_suit_the_sheet(disc: Disc) -> list[Finding]:
     kinds: tuple[tuple[Kind, tuple[float, float, float], Iterator[_Size]], ...] = (
         ("hole", rules.hole, _holes(disc)),
         ("web", rules.web, _webs(disc, _levels_mm(disc, rules.web))),
-        ("edge", rules.edge, _edges(disc)),
+        ("edge", rules.edge, _edges(disc, rules.edge[-1])),
         ("slit", rules.slit, _slits(disc)),
     )
     return [finding for kind, ratios, sizes in kinds for finding in _judged(disc, kind, ratios, list(sizes))]
@@ -176,15 +182,22 @@ def _slits(disc: Disc) -> Iterator[_Size]:
             yield _Size(what="The relief's width", size_mm=fold.relief_width_mm)
 
 
-def _edges(disc: Disc) -> Iterator[_Size]:
-    """Metal between the rim or the centre hole and what lies nearest to it, track by track and row by row."""
+def _edges(disc: Disc, ratio: float) -> Iterator[_Size]:
+    """Metal between the rim or the centre hole and what lies nearest to it, track by track and row by row.
+
+    Of the tracks only those that are not surely as far from it as the greatest ratio of the rule asks.
+    """
     blank = disc.movement.disc
     rim_mm, hole_mm = blank.outer_diameter_mm / 2, blank.centre_hole_mm / 2
     worth = disc.movement.plus_minus
     rim_off_mm, hole_off_mm = worth("/disc/outer_diameter_mm") / 2, worth("/disc/centre_hole_mm") / 2
-    reach_mm = radial_reach_mm(disc.turning, disc.pattern)
-    for index in disc.used_tracks:
-        nearest_mm, farthest_mm = reach_mm[index]
+    unsure_mm = edges_unsure_mm(disc) + _thickness_unsure_mm(disc, ratio)
+    limit_mm = ratio * blank.thickness_mm
+    nearest_of_mm, farthest_of_mm = np.array(disc.reach_mm).T
+    near = not_surely_held(rim_mm - farthest_of_mm - limit_mm, unsure_mm + rim_off_mm)
+    near |= not_surely_held(nearest_of_mm - hole_mm - limit_mm, unsure_mm + hole_off_mm)
+    for index in (used for used in disc.used_tracks if near[used]):
+        nearest_mm, farthest_mm = disc.reach_mm[index]
         at = Place(tracks=(index + 1,), radius_mm=float(disc.turning.radius_mm[index]))
         of = f"from the openings of track {index + 1}"
         off_mm = edge_unsure_mm(disc, index)

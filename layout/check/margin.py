@@ -7,8 +7,11 @@ that is said.
 
 from dataclasses import dataclass, replace
 
+import numpy as np
+
 from layout.check.finding import Code, Finding, Level, Place
 from layout.documents.movement import Movement
+from layout.mechanics.arrays import BoolArray, FloatArray
 
 GRAIN_MM = 1e-6  # mm; a nanometre: what writing a place into a drawing and reading it back may leave
 GRAIN_RAD = 1e-7  # rad; the same as an angle: GRAIN_MM at the smallest radius a track has, 10 mm
@@ -83,6 +86,19 @@ def judged(condition: Condition, movement: Movement) -> list[Finding]:
             remedy=condition.remedy if fails else f"Measure again to be sure; if it then fails: {condition.remedy}",
         )
     ]
+
+
+def not_surely_held(margin: FloatArray, unsure: FloatArray | float) -> BoolArray:
+    """Of many conditions at once, the few that may fail or hold by less than their numbers are worth.
+
+    All others have nothing to tell, so that no words need be made for them. `judged` says which of these few have:
+    here a grain more is let through, so that the last digit of a sum leaves none out.
+
+    Args:
+        margin: Shape (n,). Above zero where a condition holds.
+        unsure: Shape (n,) or one for all. How far its numbers may shift it.
+    """
+    return np.asarray(margin < unsure + 10 * GRAIN_MM)
 
 
 def unsure_advice(finding: Finding) -> Finding:

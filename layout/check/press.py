@@ -15,7 +15,7 @@ from layout.documents.reading import FULL_TURN_DEG
 from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.blank import feature_core_mm, features_once
 from layout.mechanics.hits import GRAIN_MM2, Hits
-from layout.mechanics.hole_hits import CENTRE_HOLE, HoleHits, hole_hits, hole_named
+from layout.mechanics.hole_hits import CENTRE_HOLE, hole_hits, hole_named, hole_tools
 from layout.mechanics.punching import cutting_force_n, press_force_n, sheared_length_mm
 from layout.place.disc import Disc
 
@@ -31,14 +31,10 @@ def press_is_strong_enough(disc: Disc) -> list[Finding]:
     """
     if disc.cutter.kind == "laser":
         return []
-    tools = [hits.tool for hits in _hole_hits(disc)]
+    tools = list(hole_tools(disc.movement, disc.cutter))
     if disc.hits.tool is not None:
         tools.append(disc.hits.tool)
     return [finding for tool in tools for finding in _strong_enough(disc, tool)]
-
-
-def _hole_hits(disc: Disc) -> tuple[HoleHits, ...]:
-    return hole_hits(disc.movement, disc.cutter, disc.turning.direction)
 
 
 def _strong_enough(disc: Disc, tool: Tool) -> list[Finding]:
@@ -128,12 +124,14 @@ def _blank_shapes(disc: Disc) -> list[tuple[str, BaseGeometry]]:
 
 def _holes_over_holes(disc: Disc) -> list[Finding]:
     """Holes struck partly into another; what this press does not strike is there before."""
-    struck = [name for hits in _hole_hits(disc) for name in hits.holes]
-    turn = {name: place for place, name in enumerate(struck)}
     named = _blank_shapes(disc)
     shapes = np.array([shape for _, shape in named], dtype=np.object_)
-    turns = np.array([turn.get(name, NOT_STRUCK) for name, _ in named])
     earlier, later = shapely.STRtree(shapes).query(shapes, predicate="intersects")
+    if (earlier == later).all():
+        return []  # the usual case, which needs no order
+    hits = hole_hits(disc.movement, disc.cutter, disc.turning.direction)
+    turn = {name: place for place, name in enumerate(name for of_tool in hits for name in of_tool.holes)}
+    turns = np.array([turn.get(name, NOT_STRUCK) for name, _ in named])
     after = turns[later] > turns[earlier]
     earlier, later = earlier[after], later[after]
     share = _shares(shapes[later], shapes[earlier])

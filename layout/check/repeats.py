@@ -6,11 +6,19 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.check.finding import Code, Finding, Level, Place
-from layout.check.margin import GRAIN_MM, GRAIN_RAD, MOST_FINDINGS, Condition, judged, told_worth, unsure_advice
-from layout.check.worth import radius_pointer, reach_unsure_mm
+from layout.check.margin import (
+    GRAIN_MM,
+    GRAIN_RAD,
+    MOST_FINDINGS,
+    Condition,
+    judged,
+    not_surely_held,
+    told_worth,
+    unsure_advice,
+)
+from layout.check.worth import of_tracks, radius_pointer, reaches_unsure_mm
 from layout.documents.movement import StarWheel
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
-from layout.mechanics.star_wheel import touch_zone_mm
 from layout.mechanics.turning import FULL_TURN_RAD
 from layout.place.disc import Disc
 
@@ -19,15 +27,14 @@ APART = "Leave one of the two out, or put it on another track of the same pitch.
 
 def star_wheels_keep_up(disc: Disc) -> list[Finding]:
     """An error for two working edges of one track nearer than its engagement arc, over the turn's end too."""
+    near = _neighbours(disc)
+    reach_mm = (disc.turning.radius_mm * np.cos(disc.turning.row_rad))[near.track]
+    over_mm = near.apart_rad * reach_mm - disc.turning.engagement_arc_mm[near.track]
+    told = not_surely_held(over_mm, _arcs_unsure_mm(disc, near.apart_rad, near.track))
     findings: list[Finding] = []
-    for index in disc.used_tracks:
-        reach_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
-        arc_mm = float(disc.turning.engagement_arc_mm[index])
-        near = _neighbours(disc, index)
-        for one, two, apart_rad in near.of(
-            near.apart_rad * reach_mm < arc_mm + _arc_unsure_mm(disc, index, near.apart_rad)
-        ):
-            findings += judged(_step_apart(disc, index, (one, two), apart_rad * reach_mm), disc.movement)
+    for one, two, index, apart_rad in near.of(told):
+        track_mm = float(disc.turning.radius_mm[index] * math.cos(disc.turning.row_rad[index]))
+        findings += judged(_step_apart(disc, index, (one, two), apart_rad * track_mm), disc.movement)
     return findings[:MOST_FINDINGS]
 
 
@@ -47,14 +54,14 @@ def _step_apart(disc: Disc, index: int, pair: tuple[int, int], travel_mm: float)
         unit="mm",
         margin=travel_mm - limit_mm + GRAIN_MM,
         rests_on=(),
-        also_unsure=float(_arc_unsure_mm(disc, index, np.array(travel_mm * FULL_TURN_RAD / around_mm))),
+        also_unsure=_arc_unsure_mm(disc, index, travel_mm * FULL_TURN_RAD / around_mm),
         at=_at(disc, pair),
         remedy=APART,
     )
 
 
-def _arc_unsure_mm(disc: Disc, index: int, apart_rad: FloatArray) -> FloatArray:
-    """How far the travel between two plucks may be off from the arc a step takes, for angles between them.
+def _arc_unsure_mm(disc: Disc, index: int, apart_rad: float) -> float:
+    """How far the travel between two plucks may be off from the arc a step takes, for an angle between them.
 
     The arc by its own worth; where it is computed, 2R·sin(π/n), by 2·sin(π/n) times that of R. The travel by the
     angle between the plucks times the worth of the track's radius.
@@ -68,20 +75,26 @@ def _arc_unsure_mm(disc: Disc, index: int, apart_rad: FloatArray) -> FloatArray:
     return travel_mm + worth("/star_wheel/engagement_arc_mm")
 
 
+def _arcs_unsure_mm(disc: Disc, apart_rad: FloatArray, track: IntArray) -> FloatArray:
+    """Shape (n,). `_arc_unsure_mm` of many pairs of plucks."""
+    if not disc.movement.stated:
+        return np.zeros(len(track))
+    arc_mm = np.array([_arc_unsure_mm(disc, index, 0.0) for index in range(len(disc.movement.tracks))])
+    return np.asarray(apart_rad * of_tracks(disc, "radius_mm")[track] + arc_mm[track])
+
+
 def dampers_recover(disc: Disc) -> list[Finding]:
     """An error for two plucks of a damped tooth nearer than its recovery, at the movement's fastest turn."""
     movement, worth = disc.movement, disc.movement.plus_minus
+    near = _neighbours(disc)
+    turns = near.apart_rad / FULL_TURN_RAD
+    unsure_s = worth("/damper_recovery_s") + turns * worth("/fastest_revolution_s")
+    is_damped = np.isin(np.arange(len(movement.tracks)) + 1, list(movement.damped_tracks))
+    soon = is_damped[near.track] & (turns * movement.fastest_revolution_s < movement.damper_recovery_s + unsure_s)
     findings: list[Finding] = []
-    for index in disc.used_tracks:
-        if index + 1 not in movement.damped_tracks:
-            continue
-        near = _neighbours(disc, index)
-        turns = near.apart_rad / FULL_TURN_RAD
-        unsure_s = worth("/damper_recovery_s") + turns * worth("/fastest_revolution_s")
-        soon = turns * movement.fastest_revolution_s < movement.damper_recovery_s + unsure_s
-        for (one, two, apart_rad), off_s in zip(near.of(soon), unsure_s[soon].tolist(), strict=True):
-            apart_s = apart_rad / FULL_TURN_RAD * movement.fastest_revolution_s
-            findings += judged(_damped_apart(disc, (one, two), apart_s, off_s), movement)
+    for (one, two, _, apart_rad), off_s in zip(near.of(soon), unsure_s[soon].tolist(), strict=True):
+        apart_s = apart_rad / FULL_TURN_RAD * movement.fastest_revolution_s
+        findings += judged(_damped_apart(disc, (one, two), apart_s, off_s), movement)
     return findings[:MOST_FINDINGS]
 
 
@@ -137,8 +150,7 @@ def rest_is_clear(disc: Disc) -> list[Finding]:
     """
     arcs_mm = _at_rest(disc)
     clear_mm = np.maximum(arcs_mm[1] - arcs_mm[0], arcs_mm[0] - arcs_mm[2])
-    unsure_mm = np.zeros(len(disc.movement.tracks))
-    unsure_mm[disc.used_tracks] = [reach_unsure_mm(disc, index) for index in disc.used_tracks]
+    unsure_mm = reaches_unsure_mm(disc)
     sure_mm = clear_mm - unsure_mm[disc.track_index]
     hit = np.flatnonzero(clear_mm < -GRAIN_MM)
     if len(hit) or not len(sure_mm) or sure_mm.min() >= 0:
@@ -174,8 +186,7 @@ def _stands_at_rest(
 def _at_rest(disc: Disc) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Arcs past the star wheel at rest: of each working edge, and of both ends of its touch zone."""
     turning, row_mm = disc.turning, disc.movement.gantry_offset_mm
-    ends = np.array([touch_zone_mm(disc.movement, index) for index in range(len(turning.radius_mm))])
-    ends[:, 1] += disc.pattern.body_behind_mm
+    ends = disc.touch_zones_mm + np.array([0.0, disc.pattern.body_behind_mm])
     sines = (row_mm - turning.direction * ends) / turning.radius_mm[:, None]
     zone_mm = turning.direction * (turning.row_rad[:, None] - np.arcsin(np.clip(sines, -1, 1)))
     zone_mm = zone_mm * turning.radius_mm[:, None]
@@ -186,32 +197,40 @@ def _at_rest(disc: Disc) -> tuple[FloatArray, FloatArray, FloatArray]:
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class _Neighbours:
-    """Projections that follow each other on a track, the last and the first over the turn's end too.
+    """Projections that follow each other on their track, the last and the first over the turn's end too.
 
     Attributes:
-        one: Shape (n,). Indices of projections, by angle; empty for fewer than two.
+        one: Shape (n,). Indices of projections, by track and angle; none of those alone on their track.
         two: Shape (n,). The next of each.
+        track: Shape (n,). Their track, from 0.
         apart_rad: Shape (n,). The angle between both.
     """
 
     one: IntArray
     two: IntArray
+    track: IntArray
     apart_rad: FloatArray
 
-    def of(self, chosen: BoolArray) -> list[tuple[int, int, float]]:
-        """Some of the pairs; `chosen` has shape (n,). Nearly all pairs are far apart and not worth words."""
-        columns = (self.one[chosen].tolist(), self.two[chosen].tolist(), self.apart_rad[chosen].tolist())
-        return list(zip(*columns, strict=True))
+    def of(self, chosen: BoolArray) -> list[tuple[int, int, int, float]]:
+        """Some of the pairs and their tracks; `chosen` has shape (n,). Nearly all are far apart and not worth words."""
+        columns = (self.one[chosen], self.two[chosen], self.track[chosen], self.apart_rad[chosen])
+        return list(zip(*(column.tolist() for column in columns), strict=True))
 
 
-def _neighbours(disc: Disc, index: int) -> _Neighbours:
-    here: IntArray = np.flatnonzero(disc.track_index == index)
-    if len(here) < 2:  # noqa: PLR2004 - one projection has no neighbour on its track
-        here = here[:0]
-    ranked = here[np.argsort(disc.edge_angle_rad[here], kind="stable")]
-    angles = disc.edge_angle_rad[ranked]
-    apart_rad = np.diff(np.append(angles, angles[:1] + FULL_TURN_RAD))
-    return _Neighbours(one=ranked, two=np.roll(ranked, -1), apart_rad=apart_rad)
+def _neighbours(disc: Disc) -> _Neighbours:
+    ranked = np.lexsort((disc.edge_angle_rad, disc.track_index))
+    track, angle_rad = disc.track_index[ranked], disc.edge_angle_rad[ranked]
+    begins, ends = np.diff(track, prepend=-1) != 0, np.diff(track, append=-1) != 0
+    first = np.maximum.accumulate(np.where(begins, np.arange(len(track)), 0))
+    following = np.where(ends, first, np.arange(len(track)) + 1)
+    apart_rad = angle_rad[following] + np.where(ends, FULL_TURN_RAD, 0.0) - angle_rad
+    in_company = ~(begins & ends)
+    return _Neighbours(
+        one=ranked[in_company],
+        two=ranked[following][in_company],
+        track=track[in_company],
+        apart_rad=apart_rad[in_company],
+    )
 
 
 def _at(disc: Disc, projections: tuple[int, ...]) -> Place:

@@ -4,10 +4,13 @@ What can shift it sideways: the cutter's position tolerance, the disc's run-out,
 a point may be touched.
 """
 
+import numpy as np
+
 from layout.check.finding import Code, Finding, Place
-from layout.check.margin import Condition, judged
-from layout.check.worth import WIDTH, radius_pointer
+from layout.check.margin import Condition, judged, not_surely_held
+from layout.check.worth import WIDTH, of_tracks, radius_pointer
 from layout.mechanics import star_wheel as formulas
+from layout.mechanics.arrays import FloatArray
 from layout.place.disc import Disc
 
 
@@ -17,10 +20,25 @@ def neighbours_are_not_fouled(disc: Disc) -> list[Finding]:
     Of two neighbours the one at fault is told, the nearer first.
     """
     findings: list[Finding] = []
-    for index in disc.used_tracks:
+    for index in _may_foul(disc):
         told = (judged(_beside(disc, index, other), disc.movement) for other in _neighbours(disc, index))
         findings += next((found for found in told if found), [])
     return findings
+
+
+def _may_foul(disc: Disc) -> list[int]:
+    """The used tracks that do not surely keep clear of both tracks beside them."""
+    radius_mm, star_mm = disc.turning.radius_mm, disc.movement.star_wheel.thickness_mm
+    radius_unsure_mm = of_tracks(disc, "radius_mm")
+    room_mm = np.abs(np.diff(radius_mm)) - star_mm / 2
+    both_unsure_mm = radius_unsure_mm[1:] + radius_unsure_mm[:-1]
+    # Of the tracks beside, the first and the last one have one alone.
+    margin_mm = np.minimum(
+        np.append(room_mm - both_unsure_mm, np.inf), np.concatenate([[np.inf], room_mm - both_unsure_mm])
+    )
+    reach_mm = disc.movement.projection.width_mm / 2 + _all_sideways_mm(disc)
+    told = not_surely_held(margin_mm - reach_mm, _all_unsure_mm(disc))
+    return [index for index in disc.used_tracks if told[index]]
 
 
 def _neighbours(disc: Disc, index: int) -> list[int]:
@@ -56,10 +74,12 @@ def _beside(disc: Disc, index: int, other: int) -> Condition:
 def own_star_is_met(disc: Disc) -> list[Finding]:
     """On each used track, half the width must cover half the star and every sideways error."""
     movement = disc.movement
+    half_mm, star_mm = movement.projection.width_mm / 2, movement.star_wheel.thickness_mm
+    margin_mm = half_mm - star_mm / 2 - _all_sideways_mm(disc)
+    told = not_surely_held(margin_mm, of_tracks(disc, "radius_mm") + _all_unsure_mm(disc))
     findings: list[Finding] = []
-    for index in disc.used_tracks:
+    for index in (used for used in disc.used_tracks if told[used]):
         needed_mm = movement.star_wheel.thickness_mm / 2 + _sideways_mm(disc, index)
-        half_mm = movement.projection.width_mm / 2
         condition = Condition(
             code=Code.OWN_STAR_MISSED,
             says=(
@@ -91,9 +111,31 @@ def _sideways_mm(disc: Disc, index: int) -> float:
     return disc.cutter.position_tolerance_mm + movement.disc.run_out_mm + slide_mm
 
 
+def _all_sideways_mm(disc: Disc) -> FloatArray:
+    """Shape (tracks,). `_sideways_mm` of every track."""
+    movement = disc.movement
+    slide_mm = _all_slides_mm(disc, movement.gantry_offset_mm)
+    return disc.cutter.position_tolerance_mm + movement.disc.run_out_mm + slide_mm
+
+
+def _all_slides_mm(disc: Disc, row_mm: float) -> FloatArray:
+    """Shape (tracks,). `axle_slide_mm` of every track: most at an end of the zone, or at its place nearest to y = 0."""
+    radius_mm = disc.turning.radius_mm[:, None]
+    zone_mm = np.sort(row_mm - disc.turning.direction * disc.touch_zones_mm, axis=1)
+    nearest_mm = np.clip(0.0, zone_mm[:, :1], zone_mm[:, 1:])
+    out_mm = np.sqrt(np.maximum(radius_mm**2 - np.hstack([zone_mm, nearest_mm]) ** 2, 0.0))
+    return np.asarray(np.abs(out_mm - np.sqrt(radius_mm**2 - row_mm**2)).max(axis=1))
+
+
+def _all_unsure_mm(disc: Disc) -> FloatArray:
+    """Shape (tracks,). How far what lies sideways of every track may be off, all but the tracks' own radii."""
+    unsure_mm = _halves_unsure_mm(disc) + disc.movement.plus_minus("/disc/run_out_mm")
+    slides_mm = np.array([_slide_unsure_mm(disc, index) for index in range(len(disc.turning.radius_mm))])
+    return unsure_mm + slides_mm
+
+
 def _slide_mm(disc: Disc, index: int, row_mm: float) -> float:
-    zone_mm = formulas.touch_zone_mm(disc.movement, index)
-    near_mm, far_mm = (row_mm - disc.turning.direction * place_mm for place_mm in zone_mm)
+    near_mm, far_mm = (row_mm - disc.turning.direction * place_mm for place_mm in disc.touch_zones_mm[index].tolist())
     return formulas.axle_slide_mm(float(disc.turning.radius_mm[index]), row_mm, (near_mm, far_mm))
 
 

@@ -1,13 +1,14 @@
 """Check that fast passages of the top line lie on tracks that can be cut closely enough in time."""
 
 import math
+from itertools import chain
 
 import numpy as np
 
 from layout.arrange.arrangement import Arrangement
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import told_worth
-from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
+from layout.mechanics.arrays import FloatArray, IntArray
 from layout.mechanics.tolerances import ORDER_HEARD_MS, place_error
 from layout.place.disc import Disc
 
@@ -77,8 +78,10 @@ def _unsure_ms(disc: Disc, track: int) -> float:
 
 def _fast(arrangement: Arrangement) -> tuple[IntArray, FloatArray]:
     """The plucks that play fast notes of the top line, and how far each is from the nearest other, in ms."""
-    of_top: BoolArray = np.array([any(arrangement.highest[list(notes)]) for notes in arrangement.notes], dtype=np.bool_)
-    plucks = np.flatnonzero(of_top)
+    note = np.fromiter(chain.from_iterable(arrangement.notes), dtype=np.int64)
+    count = np.fromiter(map(len, arrangement.notes), dtype=np.int64)
+    pluck = np.repeat(np.arange(len(count)), count)
+    plucks = np.unique(pluck[arrangement.highest[note]])
     asked_s = arrangement.asked_s[plucks]
     onsets_s = np.unique(asked_s)
     if len(onsets_s):

@@ -3,7 +3,10 @@
 import math
 from itertools import product
 
+import numpy as np
+
 from layout.documents.movement import StarWheel
+from layout.mechanics.arrays import FloatArray
 from layout.mechanics.star_wheel import depth_band_mm
 from layout.place.disc import Disc
 
@@ -13,6 +16,20 @@ WIDTH = "/projection/width_mm"
 def radius_pointer(track_index: int) -> str:
     """The JSON pointer of a track's radius, by its place from 0."""
     return f"/tracks/{track_index}/radius_mm"
+
+
+def of_tracks(disc: Disc, name: str) -> FloatArray:
+    """Shape (tracks,). How far one number of every track, by its name, may be off in its unit; 0 where not stated."""
+    stated, count = disc.movement.stated, len(disc.movement.tracks)
+    if not stated:
+        return np.zeros(count)
+    worths = (stated.get(f"/tracks/{index}/{name}") for index in range(count))
+    return np.array([0.0 if worth is None else worth.plus_minus for worth in worths])
+
+
+def edges_unsure_mm(disc: Disc) -> FloatArray:
+    """Shape (tracks,). `edge_unsure_mm` of every track."""
+    return of_tracks(disc, "radius_mm") + disc.movement.plus_minus(WIDTH) / 2
 
 
 def edge_unsure_mm(disc: Disc, track_index: int) -> float:
@@ -53,8 +70,16 @@ def web_unsure_mm(disc: Disc, one: int, other: int) -> float:
 def most_web_unsure_mm(disc: Disc) -> float:
     """How far any web between two openings of a disc may be off at most."""
     worth = disc.movement.plus_minus
-    radius_mm = max((worth(radius_pointer(index)) for index in disc.used_tracks), default=0.0)
+    radius_mm = float(of_tracks(disc, "radius_mm")[disc.used_tracks].max(initial=0.0))
     return max(2 * radius_mm + worth(WIDTH), along_unsure_mm(disc))
+
+
+def reaches_unsure_mm(disc: Disc) -> FloatArray:
+    """Shape (tracks,). `reach_unsure_mm` of every used track; 0 for the others."""
+    unsure_mm = np.zeros(len(disc.movement.tracks))
+    if disc.movement.stated:
+        unsure_mm[disc.used_tracks] = [reach_unsure_mm(disc, index) for index in disc.used_tracks]
+    return unsure_mm
 
 
 def reach_unsure_mm(disc: Disc, track_index: int) -> float:

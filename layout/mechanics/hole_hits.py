@@ -80,6 +80,16 @@ def hole_hits(movement: Movement, cutter: Cutter, direction: int) -> tuple[HoleH
         cutter: The press; a laser has no tools, and so no hits.
         direction: +1 for a disc that turns clockwise, −1 for one that turns anticlockwise.
     """
+    return tuple(_in_order(tool, holes, cutter, direction) for tool, holes in _by_tool(movement, cutter))
+
+
+def hole_tools(movement: Movement, cutter: Cutter) -> tuple[Tool, ...]:
+    """The tools of `hole_hits`, in their order; found without the order of the hits."""
+    return tuple(tool for tool, _ in _by_tool(movement, cutter))
+
+
+def _by_tool(movement: Movement, cutter: Cutter) -> list[tuple[Tool, list[_Hole]]]:
+    """The holes that each tool strikes, by tool in the order in which the drawing first needs it."""
     of_tool: dict[str, list[_Hole]] = {}
     tools: dict[str, Tool] = {}
     for hole in _holes(movement.disc):
@@ -87,7 +97,7 @@ def hole_hits(movement: Movement, cutter: Cutter, direction: int) -> tuple[HoleH
         if tool is not None:
             tools[tool.tool] = tool
             of_tool.setdefault(tool.tool, []).append(hole)
-    return tuple(_in_order(tools[name], holes, cutter, direction) for name, holes in of_tool.items())
+    return [(tools[name], holes) for name, holes in of_tool.items()]
 
 
 def not_struck(movement: Movement, cutter: Cutter) -> tuple[str, ...]:

@@ -6,12 +6,14 @@ import numpy as np
 
 from layout.documents.cutter import Cutter
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
 from layout.mechanics.hits import Hits
 from layout.mechanics.net_section import MetalLeft, metal_left
-from layout.mechanics.openings import Openings, openings_at
+from layout.mechanics.openings import Openings, openings_at, radial_reach_mm
 from layout.mechanics.projection import Pattern
+from layout.mechanics.star_wheel import touch_zone_mm
+from layout.mechanics.torque import TurnTorque, torque_over_turn
 from layout.mechanics.turning import Turning
 
 
@@ -37,6 +39,9 @@ class Disc:
     edge_angle_rad: FloatArray
     _metal_left: list[MetalLeft | None] = field(default_factory=list, init=False, repr=False)
     _openings: list[Openings] = field(default_factory=list, init=False, repr=False)
+    _reach_mm: list[tuple[tuple[float, float], ...]] = field(default_factory=list, init=False, repr=False)
+    _touch_zones_mm: list[FloatArray] = field(default_factory=list, init=False, repr=False)
+    _torque: list[TurnTorque | None] = field(default_factory=list, init=False, repr=False)
 
     @property
     def projection_count(self) -> int:
@@ -84,6 +89,31 @@ class Disc:
         return self._openings[0]
 
     @property
+    def reach_mm(self) -> tuple[tuple[float, float], ...]:
+        """For every track the least and greatest distance of its openings from the centre, found once."""
+        if not self._reach_mm:
+            self._reach_mm.append(tuple(radial_reach_mm(self.turning, self.pattern)))
+        return self._reach_mm[0]
+
+    @property
+    def touch_zones_mm(self) -> FloatArray:
+        """Shape (tracks, 2). For every track what `touch_zone_mm` tells, found once for tracks that state alike."""
+        if not self._touch_zones_mm:
+            arcs = [(track.engagement_arc_mm, track.release_arc_mm) for track in self.movement.tracks]
+            zones = {each: touch_zone_mm(self.movement, arcs.index(each)) for each in set(arcs)}
+            self._touch_zones_mm.append(frozen_floats(np.array([zones[each] for each in arcs])))
+        return self._touch_zones_mm[0]
+
+    @property
+    def torque(self) -> TurnTorque | None:
+        """The teeth's torque over the turn, as `torque_over_turn` finds it: once, for check and report alike."""
+        if not self._torque:
+            sounds_s = self.turning.sounds_s(self.edge_angle_rad, self.track_index)
+            self._torque.append(torque_over_turn(self.movement, self.turning, self.track_index, sounds_s))
+        return self._torque[0]
+
+    @property
     def used_tracks(self) -> list[int]:
         """Places of the tracks that carry a projection, from 0, in rising order."""
-        return [int(index) for index in np.unique(self.track_index)]
+        used: list[int] = np.unique(self.track_index).tolist()
+        return used

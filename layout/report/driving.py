@@ -3,7 +3,6 @@
 from layout.documents.movement import Movement
 from layout.documents.pitch import key_of, pitch_of
 from layout.mechanics.starting import starting_of
-from layout.mechanics.torque import torque_over_turn
 from layout.mechanics.winding import DiscLoad, braked_revolution_s, run_down, wound_drive_of
 from layout.place.disc import Disc
 from layout.report.report import Driving, Loaded
@@ -16,8 +15,7 @@ def driving_of(disc: Disc) -> Driving:
         disc: The disc; without projections it has no torque, and is wound as one that asks for none.
     """
     movement = disc.movement
-    sounds_s = disc.turning.sounds_s(disc.edge_angle_rad, disc.track_index)
-    torque = torque_over_turn(movement, disc.turning, disc.track_index, sounds_s)
+    torque = disc.torque
     winding = movement.drive.winding if movement.drive is not None else None
     load = DiscLoad(
         peak_nmm=0.0 if torque is None else torque.peak_nmm, mean_nmm=0.0 if torque is None else torque.mean_nmm

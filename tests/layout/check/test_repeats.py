@@ -1,6 +1,8 @@
 import math
 
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from layout.arrange.arrangement import Arrangement, LeftOut
 from layout.check import Code, Level, check
@@ -9,6 +11,7 @@ from layout.check.repeats import dampers_recover, plucks_lie_in_the_music, rest_
 from layout.documents import Movement
 from layout.mechanics.arrays import frozen_floats
 from tests.layout.examples import PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
+from tests.thorough import tried
 
 # On track 1 of the plain movement, radius 50 at 60 s a turn, the edge travels 2 pi 50 / 60 = 5.235988 mm/s,
 # so the engagement arc of 3.2 mm takes 0.611155 s.
@@ -248,3 +251,21 @@ def test_music_that_fits_passes() -> None:
 
     assert music_fits_the_turn(arrangement_of([(1, 0.0), (1, 49.0)]), disc) == []
     assert math.isclose(disc.turning.free_turn_s, 50.0)
+
+
+@settings(max_examples=tried(60), deadline=None)
+@given(plucks=st.lists(st.tuples(st.integers(1, 3), st.floats(0, 50)), max_size=25))
+def test_the_pairs_told_are_those_that_following_each_track_round_finds(plucks: list[tuple[int, float]]) -> None:
+    disc = disc_of(PLAIN, plucks)
+    expected = []
+    for index, radius_mm in enumerate((50, 60, 100)):
+        here = sorted(
+            (angle, place) for place, angle in enumerate(disc.edge_angle_rad) if disc.track_index[place] == index
+        )
+        for (angle, one), (after, two) in zip(here, here[1:] + here[:1], strict=True):
+            # the last and the first are neighbours over the turn's end; one alone has no neighbour
+            apart_rad = after - angle + (2 * math.pi if (angle, one) == here[-1] else 0.0)
+            if len(here) > 1 and apart_rad * radius_mm < 3.2 - 1e-6:
+                expected.append((one, two))
+
+    assert [finding.at.projections for finding in star_wheels_keep_up(disc)] == expected

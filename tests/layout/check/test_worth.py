@@ -12,6 +12,7 @@ from layout.check.kerf import nothing_closes_under_the_kerf
 from layout.check.margin import told_worth
 from layout.check.net_section import metal_holds_along_rays_and_rings
 from layout.check.timing import fast_passages_are_held
+from layout.check.worth import edge_unsure_mm, edges_unsure_mm, of_tracks, reach_unsure_mm, reaches_unsure_mm
 from tests.layout.check.test_drive import LIFTED, SPRING, WOUND, found
 from tests.layout.check.test_feature_sizes import cutter_ruling
 from tests.layout.check.test_net_section import CHORDS, ROUND, cutter_asking
@@ -193,3 +194,19 @@ def test_a_winding_of_nearly_two_turns_says_what_they_are_worth() -> None:
 
     assert (finding.code, finding.level) == (Code.WINDING_TOO_SHORT, Level.ADVICE)
     assert finding.message.endswith(f" It fails by 0.200 turns, less than the ±0.327 turns {STANDS_ON}")
+
+
+ARCS = {"tracks/1/engagement_arc_mm": worth(3.0, 0.03), "tracks/1/release_arc_mm": worth(0.5, 0.03)}
+
+
+@pytest.mark.parametrize("arcs", [{}, ARCS], ids=["computed wheel", "measured arcs"])
+def test_the_worths_of_all_tracks_at_once_are_those_of_each(arcs: dict[str, Any]) -> None:
+    stated = {"tracks/1/radius_mm": worth(60, 0.03), "star_wheel/tip_radius_mm": worth(3.2, 0.03), **arcs}
+    disc = disc_of(movement_with(stated), [(1, 1.0), (2, 5.0)])
+
+    assert of_tracks(disc, "radius_mm").tolist() == [0.0, 0.03, 0.0]
+    assert edges_unsure_mm(disc).tolist() == [edge_unsure_mm(disc, index) for index in range(3)]
+    # track 3 carries no projection
+    assert reaches_unsure_mm(disc).tolist() == [reach_unsure_mm(disc, 0), reach_unsure_mm(disc, 1), 0.0]
+    assert reach_unsure_mm(disc, 1) > 0
+    assert reaches_unsure_mm(disc_of(movement_with(), [(1, 1.0)])).tolist() == [0.0, 0.0, 0.0]

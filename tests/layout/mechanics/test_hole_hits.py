@@ -5,7 +5,7 @@ import numpy as np
 import pytest
 
 from layout.documents import Movement
-from layout.mechanics.hole_hits import hole_hits, hole_tool, not_struck
+from layout.mechanics.hole_hits import hole_hits, hole_tool, hole_tools, not_struck
 from tests.layout.examples import LASER, PRESS, SHIPPED, cutter_with, movement_with
 
 
@@ -37,6 +37,8 @@ def test_the_shipped_press_strikes_every_hole_of_a_shipped_disc(
     notch = ("location notch 4 x 3 mm (part of the rim)",) if movement.id == "mossbrook-67" else ()
 
     assert struck(movement) == tools
+    assert [tool.tool for tool in hole_tools(movement, PRESS)] == [name for name, _ in tools]
+    assert hole_tools(movement, LASER) == ()
     assert not_struck(movement, PRESS) == (*notch, "rim (left to blanking)")
 
 

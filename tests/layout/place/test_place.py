@@ -5,9 +5,14 @@ import numpy as np
 import pytest
 
 from layout.documents import Movement
+from layout.mechanics.openings import radial_reach_mm
+from layout.mechanics.star_wheel import touch_zone_mm
+from layout.mechanics.torque import torque_over_turn
 from layout.place import place
 from layout.play import play
 from tests.layout.examples import LASER, PLAIN, SHIPPED, arrangement_of, disc_of, movement_with
+
+MEASURED = movement_with({"id": "measured", "tracks/1/engagement_arc_mm": 2.9, "tracks/1/release_arc_mm": 0.4})
 
 
 def test_projection_i_is_pluck_i() -> None:
@@ -38,6 +43,32 @@ def test_the_metal_left_of_a_disc_is_worked_out_once_and_of_another_disc_anew() 
     assert other.metal_left.line_mm < one.metal_left.line_mm - 1
     assert other.metal_left.ring_mm == pytest.approx(one.metal_left.ring_mm, abs=1e-4)
     assert disc_of(PLAIN, []).metal_left is None
+
+
+def test_the_torque_of_a_disc_is_worked_out_once_and_of_another_disc_anew() -> None:
+    movement = SHIPPED[1]
+    one = disc_of(movement, [(5, 1.0), (20, 20.0)])
+    other = replace(one, edge_angle_rad=np.ones(2))
+
+    assert one.torque is one.torque
+    assert one.torque is not None
+    assert other.torque is not None
+    sounds_s = one.turning.sounds_s(one.edge_angle_rad, one.track_index)
+    told = torque_over_turn(movement, one.turning, one.track_index, sounds_s)
+    assert told is not None
+    assert (one.torque.peak_nmm, one.torque.peak_at_s) == (told.peak_nmm, told.peak_at_s)
+    assert other.torque.peak_at_s > told.peak_at_s + 1
+    assert disc_of(PLAIN, [(1, 1.0)]).torque is None
+
+
+@pytest.mark.parametrize("movement", [*SHIPPED, MEASURED], ids=lambda movement: movement.id)
+def test_a_disc_knows_the_reach_and_the_touch_zone_of_every_track(movement: Movement) -> None:
+    disc = disc_of(movement, [(1, 1.0)])
+
+    assert disc.reach_mm is disc.reach_mm
+    assert list(disc.reach_mm) == radial_reach_mm(disc.turning, disc.pattern)
+    zones_mm = [touch_zone_mm(movement, index) for index in range(len(movement.tracks))]
+    assert disc.touch_zones_mm.tolist() == [list(zone) for zone in zones_mm]
 
 
 @pytest.mark.parametrize("movement", SHIPPED, ids=lambda movement: movement.id)
