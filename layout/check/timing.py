@@ -1,14 +1,13 @@
 """Check that fast passages of the top line lie on tracks that can be cut closely enough in time."""
 
 import math
-from itertools import chain
 
 import numpy as np
 
 from layout.arrange.arrangement import Arrangement
 from layout.check.finding import Code, Finding, Level, Place
 from layout.check.margin import told_worth
-from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.arrays import FloatArray, IntArray, end_to_end
 from layout.mechanics.tolerances import ORDER_HEARD_MS, place_error
 from layout.place.disc import Disc
 
@@ -78,9 +77,7 @@ def _unsure_ms(disc: Disc, track: int) -> float:
 
 def _fast(arrangement: Arrangement) -> tuple[IntArray, FloatArray]:
     """The plucks that play fast notes of the top line, and how far each is from the nearest other, in ms."""
-    note = np.fromiter(chain.from_iterable(arrangement.notes), dtype=np.int64)
-    count = np.fromiter(map(len, arrangement.notes), dtype=np.int64)
-    pluck = np.repeat(np.arange(len(count)), count)
+    pluck, note = end_to_end(arrangement.notes)
     plucks = np.unique(pluck[arrangement.highest[note]])
     asked_s = arrangement.asked_s[plucks]
     onsets_s = np.unique(asked_s)

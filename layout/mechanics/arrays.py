@@ -1,6 +1,7 @@
 """Array types shared by the stages' values, the one way to freeze an array, and runs of places."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
+from itertools import chain
 
 import numpy as np
 from numpy.typing import NDArray
@@ -43,3 +44,14 @@ def counted_out(first: IntArray, count: IntArray) -> tuple[IntArray, IntArray]:
     """
     run = np.repeat(np.arange(len(count)), count)
     return run, np.arange(len(run)) + (first - np.cumsum(count) + count)[run]
+
+
+def end_to_end(runs: Sequence[Sequence[int]]) -> tuple[IntArray, IntArray]:
+    """The entries of all runs one after the other: (7, 5), () and (3,) are the runs 0 0 2, the entries 7 5 3.
+
+    Returns:
+        The place of the run and the entry, both in as many entries as there are in all; empty for no runs.
+    """
+    entry = np.fromiter(chain.from_iterable(runs), dtype=np.int64)
+    count = np.fromiter(map(len, runs), dtype=np.int64, count=len(runs))
+    return np.repeat(np.arange(len(runs)), count), entry

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from layout.arrange.arrangement import Arrangement, LeftOutReason
-from layout.mechanics.arrays import BoolArray, FloatArray
+from layout.mechanics.arrays import BoolArray, FloatArray, end_to_end
 
 NUDGED_FROM_MS = 1e-3  # ms; a microsecond, a hundredth of a micrometre on a disc: less is rounding, not music
 NANOSECOND_MS_DECIMALS = 6  # nudges are found in whole nanoseconds: the rest is rounding of seconds
@@ -50,12 +50,11 @@ def fates_of(arrangement: Arrangement) -> Fates:
     kept, moved, covered = (np.zeros(count, dtype=np.bool_) for _ in range(3))
     nudge_ms = np.zeros(count)
     pluck_nudge_ms = nudges_ms(arrangement)
-    for pluck, notes in enumerate(arrangement.notes):
-        played = list(notes)
-        kept[played] = True
-        moved[played] = arrangement.octave_semitones[pluck] != 0
-        covered[played[1:]] = True
-        nudge_ms[played] = pluck_nudge_ms[pluck]
+    pluck, note = end_to_end(arrangement.notes)
+    kept[note] = True
+    moved[note] = arrangement.octave_semitones[pluck] != 0
+    covered[note[np.diff(pluck, prepend=-1) == 0]] = True
+    nudge_ms[note] = pluck_nudge_ms[pluck]
     reasons: list[LeftOutReason | None] = [None] * count
     for left in arrangement.left_out:
         reasons[left.note] = left.reason
