@@ -2,11 +2,12 @@
 
 import math
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 import shapely
 
-from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
+from layout.mechanics.arrays import FloatArray, IntArray
 
 NEAR_STOPS = 8  # stops looked at round each; with 5 the trips come out 1.4 % longer, with 12 0.2 % shorter and later
 _REACH = 1.3  # of the side a stop has to itself: within it most stops find as many as are looked for
@@ -27,61 +28,78 @@ class NearStops:
     other: IntArray
     away_mm: FloatArray
 
-    def of(self, kept: BoolArray) -> "NearStops":
-        """Some of the pairs; `kept` has shape (m,)."""
-        return NearStops(one=self.one[kept], other=self.other[kept], away_mm=self.away_mm[kept])
-
     def by_stop(self, count: int) -> list[list[tuple[int, float]]]:
         """For each of `count` stops those near it and how far they are, the nearest first; empty for none."""
-        near: list[list[tuple[int, float]]] = [[] for _ in range(count)]
-        for one, other, away_mm in zip(self.one.tolist(), self.other.tolist(), self.away_mm.tolist(), strict=True):
-            near[one].append((other, away_mm))
-        return near
+        pairs = list(zip(self.other.tolist(), self.away_mm.tolist(), strict=True))
+        begins = np.searchsorted(self.one, np.arange(count + 1)).tolist()
+        return [pairs[begin:end] for begin, end in pairwise(begins)]
 
 
-def near_stops(places_mm: FloatArray, apart: list[set[int]]) -> NearStops:
+def near_stops(places_mm: FloatArray, apart: IntArray) -> NearStops:
     """The NEAR_STOPS nearest of every stop, the lower index first where two are as far; fewer where there are no more.
 
     Args:
         places_mm: Shape (n, 2).
-        apart: For each stop those that must not follow it: they are not near it.
+        apart: Shape (m, 2). Pairs of stops that must not follow one another: they are not near each other.
     """
     count = len(places_mm)
-    points = np.asarray(shapely.points(places_mm), dtype=np.object_)
-    tree = shapely.STRtree(points)
+    tree = shapely.STRtree(np.asarray(shapely.points(places_mm), dtype=np.object_))
     span_mm = math.hypot(*np.ptp(places_mm, axis=0))
     reach_mm = max(_REACH * span_mm / math.sqrt(count), _LEAST_REACH_MM)
-    barred = np.array([one * count + other for one in range(count) for other in apart[one]], dtype=np.int64)
-    found: list[NearStops] = []
+    near = np.zeros((count, NEAR_STOPS), dtype=np.int64)
+    away_mm = np.full((count, NEAR_STOPS), np.inf)
     left = np.arange(count)
     while len(left):
-        source, other = tree.query(points[left], predicate="dwithin", distance=reach_mm)
-        one = left[source]
-        may_follow = (one != other) & ~np.isin(one * count + other, barred)
-        ranked = _nearest(places_mm, one[may_follow], other[may_follow])
-        done = np.bincount(ranked.one, minlength=count) >= (NEAR_STOPS if reach_mm <= span_mm else 0)
-        found.append(ranked.of(done[ranked.one]))
-        left = left[~done[left]]
+        # A tree looks at the box of what it is asked for: a box's diagonal stands for it, with fewest corners to make.
+        corners_mm = [places_mm[left] - reach_mm, places_mm[left] + reach_mm]
+        row, other = tree.query(shapely.linestrings(np.stack(corners_mm, axis=1)))
+        near[left], away_mm[left] = _nearest(places_mm, apart, left, _in_rows(row, other, (len(left), count)))
+        if reach_mm > span_mm:
+            break
+        left = left[away_mm[left, -1] > reach_mm]  # what is farther off may have one outside the box before it
         reach_mm *= 2
-    return _together(found)
+    one, rank = np.nonzero(np.isfinite(away_mm))
+    return NearStops(one=one, other=near[one, rank], away_mm=away_mm[one, rank])
 
 
-def _nearest(places_mm: FloatArray, one: IntArray, other: IntArray) -> NearStops:
-    """Of pairs the NEAR_STOPS nearest of each first stop."""
-    dx_mm, dy_mm = (places_mm[one] - places_mm[other]).T
+def _in_rows(row: IntArray, other: IntArray, shape: tuple[int, int]) -> IntArray:
+    """Pairs, ordered by their row, as a table: rising in each row, and filled up with a stop there is not.
+
+    Args:
+        row: Shape (m,). The rows.
+        other: Shape (m,). The stops.
+        shape: How many rows and stops there are.
+    """
+    rows, count = shape
+    in_row = np.bincount(row, minlength=rows)
+    table = np.full((rows, max(int(in_row.max()), NEAR_STOPS)), count)
+    table[row, np.arange(len(row)) - (np.cumsum(in_row) - in_row)[row]] = other
+    return np.sort(table, axis=1)
+
+
+def _nearest(places_mm: FloatArray, apart: IntArray, left: IntArray, others: IntArray) -> tuple[IntArray, FloatArray]:
+    """The NEAR_STOPS nearest of some stops and how far they are, infinitely far where there are no more.
+
+    Args:
+        places_mm: Shape (n, 2).
+        apart: Shape (k, 2). Pairs that must not follow one another.
+        left: Shape (m,). The stops, rising.
+        others: Shape (m, w). For each those to choose from, rising; n for none.
+    """
+    x_mm, y_mm = np.append(places_mm, [(np.inf, np.inf)], axis=0).T
+    dx_mm, dy_mm = x_mm[others] - x_mm[left, None], y_mm[others] - y_mm[left, None]
     away_mm = np.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)  # rounded the same by every processor, which hypot is not
-    order = np.lexsort((other, away_mm, one))
-    one, other, away_mm = one[order], other[order], away_mm[order]
-    rank = np.arange(len(one)) - np.searchsorted(one, one)
-    kept = rank < NEAR_STOPS
-    return NearStops(one=one[kept], other=other[kept], away_mm=away_mm[kept])
+    away_mm[others == left[:, None]] = np.inf
+    away_mm[_found(apart, left, others)] = np.inf
+    away_mm[_found(apart[:, ::-1], left, others)] = np.inf
+    order = np.argsort(away_mm, axis=1, kind="stable")[:, :NEAR_STOPS]
+    return np.take_along_axis(others, order, axis=1), np.take_along_axis(away_mm, order, axis=1)
 
 
-def _together(parts: list[NearStops]) -> NearStops:
-    one = np.concatenate([part.one for part in parts])
-    order = np.argsort(one, kind="stable")
-    return NearStops(
-        one=one[order],
-        other=np.concatenate([part.other for part in parts])[order],
-        away_mm=np.concatenate([part.away_mm for part in parts])[order],
-    )
+def _found(pairs: IntArray, left: IntArray, others: IntArray) -> tuple[IntArray, IntArray]:
+    """Rows and columns where the second of a pair stands in the table, in the row of the first."""
+    place = np.minimum(np.searchsorted(left, pairs[:, 0]), len(left) - 1)
+    has_row = left[place] == pairs[:, 0]
+    row, other = place[has_row], pairs[has_row, 1]
+    pair, column = np.nonzero(others[row] == other[:, None])
+    return row[pair], column

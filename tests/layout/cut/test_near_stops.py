@@ -3,12 +3,14 @@
 from itertools import pairwise
 
 import numpy as np
+import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
 from layout.cut.first_trip import first_trip
 from layout.cut.near_stops import NEAR_STOPS, near_stops
 
+NO_PAIRS = np.zeros((0, 2), dtype=np.int64)
 # Few places, so that stops fall together and many are equally far; the spread makes crowds and strays.
 PLACES = st.lists(
     st.tuples(st.integers(-9, 9), st.integers(-9, 9)).map(lambda at: (at[0] * abs(at[0]), at[1] * 0.5)),
@@ -19,26 +21,40 @@ PLACES = st.lists(
 
 @given(places=PLACES, seed=st.integers(0, 99))
 def test_the_near_stops_are_the_nearest_of_all_that_may_follow(places: list[tuple[float, float]], seed: int) -> None:
-    places_mm, dice = np.array(places), np.random.default_rng(seed)
-    apart: list[set[int]] = [set() for _ in places]
-    for one, other in dice.integers(0, len(places), (len(places), 2)).tolist():
-        apart[one].add(other)
-        apart[other].add(one)
+    places_mm, pairs = np.array(places), np.random.default_rng(seed).integers(0, len(places), (len(places), 2))
+    apart = {(one, other) for pair in pairs.tolist() for one, other in (pair, pair[::-1])}
 
-    near = near_stops(places_mm, apart).by_stop(len(places))
+    near = near_stops(places_mm, pairs).by_stop(len(places))
 
     away_mm = np.sqrt(((places_mm[:, None] - places_mm[None]) ** 2).sum(axis=2))
     for one in range(len(places)):
-        others = [other for other in range(len(places)) if other != one and other not in apart[one]]
+        others = [other for other in range(len(places)) if other != one and (one, other) not in apart]
         ranked = sorted((float(away_mm[one, other]), other) for other in others)
         assert [(other, far) for far, other in ranked[:NEAR_STOPS]] == near[one]
+
+
+@pytest.mark.parametrize("kind", ["anywhere", "grid", "crowds"])
+def test_of_many_stops_the_near_ones_are_the_first_in_the_order_of_all_distances(kind: str) -> None:
+    dice = np.random.default_rng(4)
+    grid = np.stack(np.meshgrid(np.arange(20.0), np.arange(20.0)), axis=-1).reshape(-1, 2)
+    crowds = dice.integers(0, 5, (400, 2)) * 50 + dice.normal(0, 1, (400, 2))
+    places_mm = {"anywhere": dice.uniform(0, 100, (400, 2)), "grid": dice.permutation(grid), "crowds": crowds}[kind]
+
+    near = near_stops(places_mm, NO_PAIRS)
+
+    dx_mm, dy_mm = (places_mm[:, None] - places_mm[None]).transpose(2, 0, 1)
+    away_mm = np.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)
+    np.fill_diagonal(away_mm, np.inf)
+    nearest = np.argsort(away_mm, axis=1, kind="stable")[:, :NEAR_STOPS]  # the lower index first where as far
+    assert near.other.reshape(-1, NEAR_STOPS).tolist() == nearest.tolist()
+    assert near.away_mm.tolist() == np.take_along_axis(away_mm, nearest, axis=1).ravel().tolist()
 
 
 @given(places=PLACES)
 def test_the_first_trip_goes_to_every_stop_once(places: list[tuple[float, float]]) -> None:
     places_mm = np.array(places)
 
-    trip = first_trip(places_mm, near_stops(places_mm, [set() for _ in places]))
+    trip = first_trip(places_mm, near_stops(places_mm, NO_PAIRS))
 
     assert sorted(trip) == list(range(len(places)))
 
@@ -47,7 +63,7 @@ def test_the_first_trip_goes_round_by_what_saves_most() -> None:
     # Home between two pairs of stops 10 mm off: a way within a pair saves 10 + 10 − 1 mm; one across saves nothing.
     places_mm = np.array([(-10.0, 0.0), (10.0, 0.0), (-10.0, 1.0), (10.0, 1.0), (0.0, 0.0)])
 
-    trip = first_trip(places_mm, near_stops(places_mm, [set() for _ in places_mm]))
+    trip = first_trip(places_mm, near_stops(places_mm, NO_PAIRS))
 
     beside = {frozenset(pair) for pair in pairwise(trip)}
     assert {frozenset((0, 2)), frozenset((1, 3))} <= beside

@@ -22,6 +22,7 @@ from layout.mechanics.arrays import FloatArray
 from layout.place.disc import Disc
 from layout.walk import lay_out
 from tests.bench.opponents.long_two_opt import long_two_opt_mm
+from tests.layout.cut.plain_trip import plain_round_trip
 from tests.layout.examples import LASER, PLAIN, PRESS, SHIPPED, cutter_with, disc_of, movement_with
 from tests.thorough import tried
 
@@ -168,6 +169,18 @@ def test_every_stop_is_visited_once_and_forbidden_pairs_are_kept_apart_where_the
     assert sorted(order.tolist()) == list(range(count))
     forbidden = set(pairs)
     assert [step for step in pairwise(order.tolist()) if tuple(sorted(step)) in forbidden] == []
+
+
+@settings(max_examples=tried(60), deadline=None)
+@given(seed=st.integers(0, 2**32 - 1), count=st.integers(2, 24), tries=st.sampled_from([0, 3, 50]))
+def test_a_trip_is_the_one_that_the_same_steps_told_plainly_find(seed: int, count: int, tries: int) -> None:
+    dice = np.random.default_rng(seed)
+    # Every second time on a coarse grid, where many stops are as far and some in one place.
+    stops_mm = dice.uniform(-100, 100, (count, 2)) if seed % 2 else dice.integers(-6, 7, (count, 2)) * 1.0
+    pairs = np.sort(dice.integers(0, count, (tries, 2)), axis=1)
+    pairs = pairs[pairs[:, 0] < pairs[:, 1]]
+
+    assert short_round_trip(stops_mm, pairs).tolist() == plain_round_trip(stops_mm, pairs)
 
 
 @pytest.mark.parametrize("seed", range(5))
