@@ -29,7 +29,7 @@ def clashing(problem: Problem, plucks: IntArray) -> tuple[int, ...]:
         plucks: Plucks among which those that must sound have no room; rising.
     """
     budget = Budget(nodes=MOST_NODES, states=MOST_STATES, looks=MOST_LOOKS)
-    steps = Steps(problem)
+    steps = Steps(problem, plucks)
     forced = [pluck for pluck in plucks.tolist() if problem.must_sound[pluck]]
     last = _least(lambda count: not _have_room(problem, steps, forced[:count], budget), len(forced))
     forced = forced[:last]

@@ -16,7 +16,7 @@ from layout.arrange.loads import hard_moments, heavy_moments, lifted_count
 from layout.arrange.moments_kept import Overrun
 from layout.arrange.nearness import near_pairs
 from layout.arrange.problem import NO_PLUCK, Problem
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import IntArray, begins_run
 
 _STEPS_TOGETHER = 6  # spots on one track that a row from the start lets through at most; longer ones come when broken
 
@@ -142,7 +142,9 @@ class Columns:
         earliest_ns, latest_ns = problem.earliest_ns[there], problem.latest_ns[there]
         least_ns = int(problem.least_ns[there].min())
         in_step = np.all(np.diff(earliest_ns) >= 0) and np.all(np.diff(latest_ns) >= 0)
-        for room in range(1, _STEPS_TOGETHER + 1):
+        # A stretch holds too many only of more plucks than there is room for.
+        plucks = len(set(problem.pluck[there].tolist()))
+        for room in range(1, min(_STEPS_TOGETHER, plucks - 1) + 1):
             if in_step and not problem.spread[there].any():
                 yield from self._runs(there, room, room * least_ns)
             else:
@@ -163,10 +165,9 @@ class Columns:
         earliest_ns, latest_ns, pluck = problem.earliest_ns[there], problem.latest_ns[there], problem.pluck[there]
         begins_ns = np.unique(earliest_ns)[:, None]
         inside = (earliest_ns >= begins_ns) & (latest_ns < begins_ns + stretch_ns)
-        once = len(there) == len(np.unique(pluck))
         before = np.zeros(len(there), dtype=np.bool_)
         for row in inside[inside.sum(axis=1) > room]:
-            if (row & ~before).any() and (once or len(np.unique(pluck[row])) > room):
+            if (row & ~before).any() and begins_run(pluck[row]).sum() > room:  # spots stand by pluck
                 before = row
                 yield Row(columns=[self._column[spot] for spot in there[row].tolist()], most=room)
 

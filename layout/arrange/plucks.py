@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -77,8 +78,9 @@ def wanted_plucks(
     new[1:] = (onset_s[1:] != onset_s[:-1]) | (pitch[1:] != pitch[:-1])
     starts = np.flatnonzero(new)
     count = len(starts)
-    merged = tuple(tuple(part.tolist()) for part in np.split(notes, starts[1:])) if count else ()
-    forced = [rulings.of_pluck(part) for part in merged]
+    every, ends = notes.tolist(), [*starts.tolist(), len(notes)]
+    merged = tuple(tuple(every[first:last]) for first, last in pairwise(ends))
+    forced = [rulings.of_pluck(part) if rulings.forced else None for part in merged]
     melody = _any_of(weighed.melody, starts)
     largest_ms = settings.largest_nudge_ms
     melody_ms = min(settings.largest_melody_nudge_ms, largest_ms)

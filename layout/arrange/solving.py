@@ -97,7 +97,8 @@ class Solving:
         self.impossible: Impossible | None = None
         self._silent = np.flatnonzero(problem.must_sound & (np.diff(problem.first_spot) == 0))
         self._groups: list[_Group] = []
-        self._alone: dict[int, int] = {}
+        self._alone: dict[int, int] = {}  # the spot of each pluck that touches no other, and is not yet in a group
+        self._alone_worth = 0
         self._last_played: Playing | None = None
 
     @property
@@ -131,10 +132,11 @@ class Solving:
     def _take_apart(self) -> None:
         parts = parts_of(self.problem)
         self._alone = self._best_spots(parts.alone)
+        self._alone_worth = int(self.problem.worth[list(self._alone.values())].sum())
         # The longest first: they are the most crowded, and lower the bound most.
         self._waiting = sorted(parts.together, key=len)
         self._open = sum(int(self._most[plucks].sum()) for plucks in self._waiting)
-        self._steps = Steps(self.problem)
+        self._steps = Steps(self.problem, np.concatenate([np.zeros(0, dtype=np.int64), *parts.together]))
 
     def together(self, budget: Budget) -> Solved | Impossible:
         """The last step: what is broken together, solved together."""
@@ -226,8 +228,7 @@ class Solving:
     def _lower_bound(self) -> None:
         if self.problem.piled:
             return  # what follows is less than all there might be
-        alone = int(self.problem.worth[list(self._alone.values())].sum())
-        self.bound = min(self.bound, self._open + alone + sum(group.bound for group in self._groups))
+        self.bound = min(self.bound, self._open + self._alone_worth + sum(group.bound for group in self._groups))
 
     def _best_spots(self, plucks: IntArray) -> dict[int, int]:
         """The first of the best unspread spots of each of these plucks."""
@@ -292,6 +293,7 @@ class Solving:
             if pluck in self._alone:
                 del self._alone[pluck]
                 worth = int(self.problem.worth[spot])
+                self._alone_worth -= worth
                 groups.append(_Group(plucks=np.array([pluck]), spots=(spot,), bound=worth, is_best=True))
         group_of = {pluck: place for place, group in enumerate(groups) for pluck in group.plucks.tolist()}
         sets: list[set[int]] = []

@@ -1,10 +1,9 @@
 """The plucks of a part in time, as the dynamic program takes them: plain numbers, and what is still to come."""
 
-from collections.abc import Sequence
 from typing import NamedTuple
 
 from layout.arrange.problem import NO_PLUCK, Problem
-from layout.mechanics.arrays import IntArray
+from layout.mechanics.arrays import IntArray, counted_out
 
 NEVER = 1 << 62  # later than any moment, in ns
 LONG_AGO = -NEVER
@@ -47,30 +46,34 @@ class Step(NamedTuple):
 
 
 class Steps:
-    """A problem's spots as plain numbers, taken out of its arrays once: many single looks are slow there."""
+    """The spots of plucks as plain numbers, taken out of their arrays once: many single looks are slow there."""
 
-    def __init__(self, problem: Problem) -> None:
-        self.problem = problem
-        self._columns: tuple[Sequence[int], ...] = (
-            range(problem.spot_count),
-            problem.track.tolist(),
-            problem.worth.tolist(),
-            problem.asked_ns.tolist(),
-            problem.earliest_ns.tolist(),
-            problem.latest_ns.tolist(),
-            problem.least_ns.tolist(),
-            problem.ringing_cost.tolist(),
-            problem.ringing_ns[problem.track].tolist(),
+    def __init__(self, problem: Problem, plucks: IntArray) -> None:
+        """Take the spots of these plucks out; of other plucks there are no steps. Spread spots are left aside."""
+        _, spots = counted_out(problem.first_spot[plucks], problem.first_spot[plucks + 1] - problem.first_spot[plucks])
+        spots = spots[problem.spread[spots] == 0]
+        columns = (
+            spots,
+            problem.track[spots],
+            problem.worth[spots],
+            problem.asked_ns[spots],
+            problem.earliest_ns[spots],
+            problem.latest_ns[spots],
+            problem.least_ns[spots],
+            problem.ringing_cost[spots],
+            problem.ringing_ns[problem.track[spots]],
         )
-        self._first = problem.first_spot.tolist()
-        self._parent = problem.parent.tolist()
-        self._must_sound = problem.must_sound.tolist()
-        self._spread = problem.spread.tolist() if problem.spread.any() else None
+        self._ways_of: dict[int, list[Way]] = {pluck: [] for pluck in plucks.tolist()}
+        ways = map(Way, *(column.tolist() for column in columns))
+        for pluck, way in zip(problem.pluck[spots].tolist(), ways, strict=True):
+            self._ways_of[pluck].append(way)
+        self._parent: list[int] = problem.parent.tolist()
+        self._must_sound: list[bool] = problem.must_sound.tolist()
 
     def of(self, plucks: IntArray) -> list[Step]:
-        """The steps of a part's plucks, rising; spread spots are left aside."""
+        """The steps of a part's plucks, rising."""
         part = plucks.tolist()
-        found = [self._ways_of(pluck) for pluck in part]
+        found = [self._ways_of[pluck] for pluck in part]
         tracks = sorted({way.track for ways in found for way in ways})
         place_of = {track: place for place, track in enumerate(tracks)}
         parents = [self._parent[pluck] for pluck in part]
@@ -98,10 +101,3 @@ class Steps:
                 floor_ns[place] = min(floor_ns[place], way.earliest_ns)
                 quiet_ns[place] = way.asked_ns - way.ringing_ns
         return steps[::-1]
-
-    def _ways_of(self, pluck: int) -> list[Way]:
-        first, last = self._first[pluck], self._first[pluck + 1]
-        ways = list(map(Way, *(column[first:last] for column in self._columns)))
-        if self._spread is None:
-            return ways
-        return [way for way in ways if not self._spread[way.spot]]

@@ -78,7 +78,8 @@ class _Board:
         if not equals:
             return
         at_ns = self.at_ns.pop(spot)
-        self._on_track[self._track[spot]].remove((at_ns, spot))
+        row = self._on_track[self._track[spot]]
+        del row[bisect_left(row, (at_ns, spot))]
         by_rest = sorted([spot, *equals], key=lambda one: self._rest(one, at_ns))
         best = next(one for one in by_rest if one == spot or self._has_room(one, at_ns, spot))
         if best != spot:
