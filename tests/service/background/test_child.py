@@ -10,8 +10,15 @@ from pathlib import Path
 
 import pytest
 
-from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest
-from service.background.planning_child import ChildEndedError, ChildTooLongError, ChildUnwantedError, PlanningChild
+from service.background.frames import read_frame, write_frame
+from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest, answer_from_json, as_json
+from service.background.planning_child import (
+    CHILD,
+    ChildEndedError,
+    ChildTooLongError,
+    ChildUnwantedError,
+    PlanningChild,
+)
 from service.parts import Parts
 from service.store.holds import FileKeeper
 from tests.faults.ordering import CUTTER, MOVEMENT, PlansHere, tune_called
@@ -216,6 +223,35 @@ def test_an_input_that_was_lost_is_refused_with_what_to_do(kept_child: PlanningC
 def test_a_planner_that_is_not_there_never_gets_warm(setup: ChildSetup) -> None:
     with pytest.raises(ChildEndedError, match=r"^its process ended with code 1$"):
         PlanningChild(replace(setup, planner="tests.faults.no_planner"))
+
+
+@of_a_process
+def test_a_child_whose_pipe_is_let_go_ends_by_itself_with_code_0(setup: ChildSetup, request_for: Requests) -> None:
+    tunes = [tune_called("Harvest"), tune_called("do:fill;"), tune_called("do:divide;"), b"no tune"]
+
+    kinds, code = answers_of_one_let_go(as_json(setup), *[as_json(request_for(tune)) for tune in tunes])
+
+    assert kinds == [Kind.WARM, Kind.PLANNED, Kind.REFUSED, Kind.REFUSED, Kind.REFUSED]
+    assert code == 0
+
+
+def test_a_child_that_is_let_go_before_it_is_told_anything_ends_too() -> None:
+    assert answers_of_one_let_go() == ([], 0)
+
+
+def answers_of_one_let_go(*messages: bytes) -> tuple[list[Kind], int]:
+    """What a child answers to each message, and the code it ends with when its pipe is closed after them."""
+    with subprocess.Popen(CHILD, stdin=subprocess.PIPE, stdout=subprocess.PIPE) as process:
+        assert process.stdin is not None
+        assert process.stdout is not None
+        answers = []
+        for message in messages:
+            write_frame(process.stdin, message)
+            answers.append(read_frame(process.stdout))
+        process.stdin.close()
+        code = process.wait(LONG_S)
+        assert read_frame(process.stdout) is None
+    return [answer_from_json(answer).kind for answer in answers if answer is not None], code
 
 
 @of_a_process

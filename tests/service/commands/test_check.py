@@ -143,7 +143,7 @@ def test_moments_in_json_are_rounded_to_a_microsecond_and_never_minus_zero(
 ) -> None:
     # The drawing's rounding leaves nanoseconds: -6.21e-09 s was seen on a real disc.
     plucks = FakePlucks(sounds_s=np.array([2.5000004, -6.21e-09, 7.1234567]))
-    monkeypatch.setattr("tests.service.fakes.FakePlucks", lambda: plucks)
+    monkeypatch.setattr("tests.service.fake_planner.FakePlucks", lambda: plucks)
 
     discwright("check", drawing, "--movement", "fernhollow-31", "--json")
 
