@@ -3,11 +3,14 @@
 from layout.check.finding import Code, Finding, Level, Place, finding_told
 
 
+MESSAGE = "The web is 0.400 mm; 0.500 mm are needed."
+
+
 def finding_at(place: Place) -> Finding:
     return Finding(
-        code=Code.WEB_TOO_THIN,
-        level=Level.ERROR,
-        message="Too thin.",
+        code=Code.MARGIN_UNSURE,
+        level=Level.WARNING,
+        message=MESSAGE,
         measured=0.4,
         limit=0.5,
         unit="mm",
@@ -20,9 +23,9 @@ def test_a_finding_is_told_under_its_own_names_with_all_that_applies_of_its_plac
     place = Place(tracks=(1, 2), projections=(0, 3), radius_mm=50.0, angle_deg=0.0, sounds_s=0.0)
 
     assert finding_told(finding_at(place)) == {
-        "code": "web-too-thin",
-        "level": "error",
-        "message": "Too thin.",
+        "code": "margin-unsure",
+        "level": "warning",
+        "message": MESSAGE,
         "measured": 0.4,
         "limit": 0.5,
         "unit": "mm",
