@@ -2,7 +2,6 @@
 
 from layout.check.finding import Code, Finding, Level, Place, finding_told
 
-
 MESSAGE = "The web is 0.400 mm; 0.500 mm are needed."
 
 
