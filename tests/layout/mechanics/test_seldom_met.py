@@ -10,6 +10,7 @@ from layout.mechanics.hole_hits import not_struck
 from layout.mechanics.openings import radial_reach_mm
 from layout.mechanics.plain_letters import plain_ascii
 from layout.mechanics.projection import pattern_of
+from layout.mechanics.spacing import MOST_TRACKS_APART, spacing_of
 from layout.mechanics.turning import turning_of
 from tests.layout.arrange.small_comb import SMALL_COMB, comb_with
 from tests.layout.examples import LASER, PRESS, movement_with
@@ -68,6 +69,21 @@ def test_slots_reach_half_their_width_in_and_out_of_their_track() -> None:
         assert nearest_mm == pytest.approx(radius_mm - 0.6, abs=0.021)
         assert farthest_mm == pytest.approx(radius_mm + 0.6, abs=0.021)
         assert farthest_mm - nearest_mm >= 1.2
+
+
+def test_openings_that_reach_past_many_tracks_are_kept_from_the_six_next_ones() -> None:
+    # 0.1 mm from track to track and projections 1.2 mm wide: each is in the way of all others.
+    tracks = [{"track": number, "radius_mm": 50 + 0.1 * number} for number in range(1, 9)]
+    teeth = [{"tooth": number, "track": number, "pitch": "C5"} for number in range(1, 9)]
+    movement = movement_with({"tracks": tracks, "teeth": teeth})
+    turning = turning_of(movement)
+
+    between = spacing_of(movement, turning, pattern_of(movement, LASER), 0.5).between
+
+    assert MOST_TRACKS_APART == 6
+    assert {(pair.inner_index, pair.outer_index) for pair in between} == {
+        (inner, outer) for outer in range(8) for inner in range(max(outer - 6, 0), outer)
+    }
 
 
 def test_a_ring_round_a_letter_is_dropped_like_an_accent() -> None:
