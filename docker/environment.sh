@@ -28,6 +28,10 @@ make_environment() {
     if [ -f "$1/stamp" ] && [ "$wanted" = "$(cat "$1/stamp")" ]; then
         return 0
     fi
+    if [ -h "$1" ]; then
+        echo "$1 is a link and what it leads to is not up to date: make the environment where it stands" >&2
+        return 1
+    fi
     echo "making the environment $1 with $("$python" --version)"
     if ! "$python" -m venv --clear "$1"; then
         echo "$python cannot make an environment: install its venv module (Debian: the package python3-venv)" >&2
