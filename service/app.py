@@ -12,6 +12,7 @@ from service.api.about import about_routes
 from service.api.answers import with_safe_head
 from service.api.asking import guard
 from service.api.catalogue import catalogue_routes
+from service.api.computing_queue import open_computing_queue
 from service.api.desk import LayoutDesk
 from service.api.events import event_routes
 from service.api.exports import export_routes
@@ -29,6 +30,7 @@ from service.api.order_files import order_file_routes
 from service.api.orders import order_routes
 from service.api.problem_pages import problem_pages
 from service.api.proofs import proof_routes
+from service.api.queued_planner import QueuedPlanner
 from service.api.quotes import quote_routes
 from service.api.readiness import readiness_routes
 from service.api.request_ids import name_requests
@@ -80,7 +82,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     meter(app, counted)
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    planner = planner or TheWalk()
+    planner = QueuedPlanner(planner or TheWalk(), open_computing_queue(app, None))
     desk = LayoutDesk(planner, LayoutCache(settings), settings.limits)
     shelf = HearingShelf(settings)
     for routes in (*_routes_of_layouts(planner, desk, parts, shelf), *_routes_of_orders(parts, queue, shelf)):

@@ -23,7 +23,8 @@ from service.web_worker import GatheringWorker
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
 GATE = "DISCWRIGHT_GATE"  # as `service.commands.web` has it
 COMPUTATION = ("layout.walk", "layout.sheet_walk", "layout.trial_walk")
-WAITING_SHARE = 0.5  # of the threads, for requests that wait and streams of events; the rest is for all others
+WAITING_SHARE = 0.25  # of the threads, for requests that wait and streams of events
+COMPUTING_SHARE = 0.6  # of the threads, for requests that compute or wait for it; the rest is for all others
 WARM_AFTER_S = 0.5  # s; first the requests that waited for the start
 
 
@@ -71,11 +72,15 @@ def on_starting(server: Any) -> None:
 
 def post_worker_init(worker: Any) -> None:
     """Tell the app when its process stops and how many may wait, and import the computation before the first tune."""
-    from service.api.stopping import tell_stopping  # noqa: PLC0415 -- the app is imported by now, and not before
+    from service.api.computing_queue import (  # noqa: PLC0415 -- the app is imported by now, and not before
+        open_computing_queue,
+    )
+    from service.api.stopping import tell_stopping  # noqa: PLC0415 -- as above
     from service.api.waiting_room import open_waiting_room  # noqa: PLC0415 -- as above
 
     tell_stopping(worker.wsgi, lambda: not worker.alive)
     open_waiting_room(worker.wsgi, int(worker.cfg.threads * WAITING_SHARE))
+    open_computing_queue(worker.wsgi, max(1, int(worker.cfg.threads * COMPUTING_SHARE)))
     warming = threading.Timer(WARM_AFTER_S, _warm)
     warming.daemon = True
     warming.start()

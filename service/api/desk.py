@@ -24,7 +24,7 @@ from service.planner import AnyPlanner, Layout
 log = logging.getLogger("discwright")
 
 JUDGED = {"findings", "good_to_cut"}  # of layout.json: what is said of the disc, and not what it is
-LOCKS = 16  # more than a process has threads that compute
+LOCKS = 256  # many more than a process has threads, so that hardly two wait who want different discs
 AT_HAND_DISCS = 16  # discs, or the last set alone where it has more; one takes 200 kB to 700 kB of memory, measured
 
 

@@ -20,6 +20,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, BinaryIO
 
 from layout.documents import Movement
+from service.api.computing_queue import computing_queue
 from service.api.layout_cache import OWNER_ONLY, PART_SUFFIX, program_digest
 from service.api.models.hearings import PlucksQuery, SoundQuery
 from service.api.problems import ProblemError
@@ -141,7 +142,7 @@ class HearingShelf:
         self._folder.mkdir(mode=OWNER_ONLY, parents=True, exist_ok=True)
         handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
         try:
-            with os.fdopen(handle, "wb") as file:
+            with os.fdopen(handle, "wb") as file, computing_queue().admitted():
                 hashing = _Hashing(file)
                 write_hearing(hearing, hashing, bits)
             digest = hashing.digest.hexdigest()

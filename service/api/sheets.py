@@ -15,6 +15,7 @@ from service.access.scopes import Scope
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import open_on_loopback
 from service.api.bodies import body_of
+from service.api.computing_queue import computing_queue
 from service.api.describing import describes
 from service.api.failures import too_large
 from service.api.models.layouts import NoQuery
@@ -62,8 +63,10 @@ def sheet_routes(limits: Limits) -> Blueprint:
         media_type = _answer_wanted(request)
         read_arguments(request, NoQuery)
         posted = _posted(request, limits)
-        plan = plan_sheets(read_sheet_job(posted.job), posted.drawings)
-        files = sheet_files_of(plan)
+        job = read_sheet_job(posted.job)
+        with computing_queue().admitted():
+            plan = plan_sheets(job, posted.drawings)
+            files = sheet_files_of(plan)
         if media_type == ZIP_MEDIA_TYPE:
             response = Response(archive_of(files), content_type=ZIP_MEDIA_TYPE)
             response.headers["Content-Disposition"] = f'attachment; filename="{_archive_name(plan)}"'

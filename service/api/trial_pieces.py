@@ -12,6 +12,7 @@ from service.api.answers import ONLY_OWN_STYLES, json_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.bodies import body_of
+from service.api.computing_queue import computing_queue
 from service.api.describing import describes
 from service.api.failures import too_large
 from service.api.models.layouts import TrialPieceQuery
@@ -64,7 +65,9 @@ def trial_piece_routes(parts: Parts, make: TrialMaker = trial_files) -> Blueprin
         file_name = _answer_wanted(request)  # what is not acceptable is refused before anything is read
         query = read_arguments(request, TrialPieceQuery)
         asked = _read(request, query, parts)
-        response = _answer(asked, make(asked.movement, asked.cutter), file_name)
+        with computing_queue().admitted():
+            files = make(asked.movement, asked.cutter)
+        response = _answer(asked, files, file_name)
         response.vary.add("Accept")
         return response
 

@@ -24,8 +24,9 @@ MOST_PORT = 65535  # ports have 16 bits (RFC 9293)
 MOST_WORKERS = 64  # workers; each is a process of its own
 MOST_THREADS = 200
 WORKERS = 2
-# Requests that wait (Prefer: wait) and streams of events hold a thread each, and cost next to nothing meanwhile.
-THREADS = 16
+# Requests that wait (Prefer: wait, or for their turn to compute) and streams of events hold a thread each, and cost
+# next to nothing meanwhile.
+THREADS = 32
 STOP_MARGIN_S = 2  # s; between the last answer and the end, for processes to end in
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
 GATE = "DISCWRIGHT_GATE"  # a file descriptor that ends when the web may open the database; set by `serve` alone

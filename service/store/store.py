@@ -24,7 +24,7 @@ from service.store.faults import StoreBusyError, StoreError, StoreFullError
 
 BUSY_TIMEOUT_S = 30  # s; how long a writer waits its turn
 CONNECT_TIMEOUT_S = 5  # s; a server on the same network answers within milliseconds
-POOL_SIZE = 10  # connections of one process; a web process has fewer threads
+POOL_SIZE = 10  # connections a process keeps; it opens as many more while more of its threads ask at a time
 RETRY_AFTER_S = (0.1, 0.3, 1.0, 3.0)  # s; waits between tries of `again`, so a server's restart is sat out
 # PostgreSQL's SQLSTATE classes (appendix A of its manual): 53 no resources, of them 53100 disk full.
 DISK_FULL_STATE = "53100"

@@ -1,0 +1,109 @@
+"""Who computes in this process at a time: few, so that all others are answered meanwhile.
+
+One thread of a process runs at a time. Where many compute, each takes as much longer, nothing is finished sooner, and
+who only wants a page waits for a turn among all of them, several times over. So two compute, in the order in which
+they came, and the others wait where waiting costs nothing. A long search does not hold them up: once it has computed
+for a second the next begins beside it. Only a share of the threads may compute or wait for it; who finds no place
+there is told to come again. Each process counts for itself.
+"""
+
+import threading
+import time
+from collections import deque
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+
+from flask import Flask, current_app
+
+from service.api.problems import ProblemError
+
+AT_A_TIME = 2  # that compute: one may wait for the disk while the other runs; more only slow each other down
+LONG_S = 1.0  # s; after which who computes no longer counts as one of the two; nearly all have ended by then
+MOST_AT_A_TIME = 8  # with those that have computed for longer
+RETRY_AFTER_S = 2  # s; in which a full process computes ten of those that wait
+COMPUTING_QUEUE = "discwright computing queue"
+
+
+class ComputingQueue:
+    """Lets those who compute begin one after the other; shared by the threads of a process."""
+
+    def __init__(self, clock: Callable[[], float] = time.monotonic) -> None:
+        """Open it to as many as like to wait.
+
+        Args:
+            clock: Seconds, only ever forward.
+        """
+        self.places: int | None = None
+        self._clock = clock
+        self._changed = threading.Condition()
+        self._waiting: deque[object] = deque()
+        self._begun_s: dict[object, float] = {}
+
+    @contextmanager
+    def admitted(self) -> Iterator[None]:
+        """Compute in here; entered when it is one's turn. Not to be entered again from within.
+
+        Raises:
+            ProblemError: As many as may compute or wait for it already.
+        """
+        mine = object()
+        with self._changed:
+            self._refuse_if_full()
+            self._waiting.append(mine)
+            try:
+                self._wait_till_first(mine)
+            finally:
+                self._waiting.remove(mine)
+                self._changed.notify_all()
+            self._begun_s[mine] = self._clock()
+        try:
+            yield
+        finally:
+            with self._changed:
+                del self._begun_s[mine]
+                self._changed.notify_all()
+
+    def _refuse_if_full(self) -> None:
+        count = len(self._waiting) + len(self._begun_s)
+        if self.places is not None and count >= self.places:
+            raise ProblemError(
+                name="service-busy",
+                detail=f"{count} requests compute or wait for their turn to, and no more than {self.places} may",
+                headers={"Retry-After": str(RETRY_AFTER_S)},
+            )
+
+    def _wait_till_first(self, mine: object) -> None:
+        while True:
+            if self._waiting[0] is not mine:
+                self._changed.wait()
+                continue
+            left_s = self._left_s()
+            if left_s == 0:
+                return
+            self._changed.wait(left_s)
+
+    def _left_s(self) -> float | None:
+        """After how long the next may begin though none of those who compute ends; None for never."""
+        if len(self._begun_s) >= MOST_AT_A_TIME:
+            return None
+        now_s = self._clock()
+        counted_s = sorted(begun_s for begun_s in self._begun_s.values() if now_s - begun_s < LONG_S)
+        return 0 if len(counted_s) < AT_A_TIME else counted_s[-AT_A_TIME] + LONG_S - now_s
+
+
+def open_computing_queue(app: Flask, places: int | None) -> ComputingQueue:
+    """The queue of an app.
+
+    Args:
+        app: The app.
+        places: How many requests may compute or wait for it at a time; None for as many as like.
+    """
+    queue: ComputingQueue = app.extensions.setdefault(COMPUTING_QUEUE, ComputingQueue())
+    queue.places = places
+    return queue
+
+
+def computing_queue() -> ComputingQueue:
+    """The queue of the app of the request at hand."""
+    queue: ComputingQueue = current_app.extensions[COMPUTING_QUEUE]
+    return queue

@@ -1,0 +1,161 @@
+"""The queue of those who compute: few at a time, in their order, and long ones beside them."""
+
+import threading
+from collections.abc import Callable, Iterator
+from concurrent.futures import Future, ThreadPoolExecutor
+from contextlib import contextmanager
+
+import pytest
+from flask import Flask
+
+from service.api import computing_queue
+from service.api.computing_queue import (
+    AT_A_TIME,
+    LONG_S,
+    MOST_AT_A_TIME,
+    RETRY_AFTER_S,
+    ComputingQueue,
+    open_computing_queue,
+)
+from service.api.problems import ProblemError
+
+WAIT_S = 10.0  # for what must come; far more than it takes
+
+
+class Job:
+    """What computes until it is told to end."""
+
+    def __init__(self, queue: ComputingQueue, begun: list["Job"]) -> None:
+        """Nothing is computed yet."""
+        self.has_begun = threading.Event()
+        self._queue = queue
+        self._begun = begun
+        self._may_end = threading.Event()
+        self.done: Future[None]
+
+    def compute(self) -> None:
+        with self._queue.admitted():
+            self._begun.append(self)
+            self.has_begun.set()
+            self._may_end.wait(WAIT_S)
+
+    def end(self) -> None:
+        self._may_end.set()
+        self.done.result(WAIT_S)
+
+
+class Shop:
+    """A queue, and those who compute in it."""
+
+    def __init__(self, queue: ComputingQueue, pool: ThreadPoolExecutor) -> None:
+        """Nobody has come yet."""
+        self.queue = queue
+        self.begun: list[Job] = []
+        self.came: list[Job] = []
+        self._pool = pool
+
+    def comes(self) -> Job:
+        """One more, once he computes or stands in the queue."""
+        job = Job(self.queue, self.begun)
+        self.came.append(job)
+        counted = self._count()
+        job.done = self._pool.submit(job.compute)
+        until(lambda: self._count() > counted)
+        return job
+
+    def _count(self) -> int:
+        return len(self.queue._waiting) + len(self.queue._begun_s)
+
+
+def until(holds: Callable[[], bool]) -> None:
+    ended = threading.Event()
+    for _ in range(int(WAIT_S / 0.001)):
+        if holds():
+            return
+        ended.wait(0.001)
+    raise AssertionError("it did not come to hold")
+
+
+@contextmanager
+def shop(queue: ComputingQueue | None = None) -> Iterator[Shop]:
+    with ThreadPoolExecutor(max_workers=3 * MOST_AT_A_TIME) as pool:
+        made = Shop(queue or ComputingQueue(), pool)
+        try:
+            yield made
+        finally:
+            for job in made.came:
+                job._may_end.set()
+
+
+def test_no_more_than_a_few_compute_at_a_time_and_the_others_follow_in_the_order_in_which_they_came() -> None:
+    with shop() as open_shop:
+        jobs = [open_shop.comes() for _ in range(AT_A_TIME + 3)]
+        until(lambda: len(open_shop.begun) == AT_A_TIME)
+        assert not jobs[AT_A_TIME].has_begun.wait(0.05)
+        for job in jobs:
+            assert job.has_begun.wait(WAIT_S)
+            job.end()
+    assert open_shop.begun[AT_A_TIME:] == jobs[AT_A_TIME:]
+
+
+def test_one_who_computes_for_long_lets_the_next_begin_beside_him() -> None:
+    now_s = [0.0]
+    with shop(ComputingQueue(lambda: now_s[0])) as open_shop:
+        for _ in range(AT_A_TIME):
+            open_shop.comes()
+        until(lambda: len(open_shop.begun) == AT_A_TIME)
+        now_s[0] = LONG_S
+        assert open_shop.comes().has_begun.wait(WAIT_S)
+
+
+def test_one_who_waits_begins_when_a_long_one_has_computed_for_a_second_though_nobody_ends(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    monkeypatch.setattr(computing_queue, "LONG_S", 0.1)
+    with shop() as open_shop:
+        jobs = [open_shop.comes() for _ in range(AT_A_TIME + 1)]
+        assert jobs[-1].has_begun.wait(WAIT_S)
+        assert not any(job.done.done() for job in jobs)
+
+
+def test_never_do_more_than_the_most_compute_however_long_each_takes() -> None:
+    now_s = [0.0]
+    with shop(ComputingQueue(lambda: now_s[0])) as open_shop:
+        for number in range(MOST_AT_A_TIME):
+            now_s[0] = number * LONG_S
+            assert open_shop.comes().has_begun.wait(WAIT_S)
+        now_s[0] += 100 * LONG_S
+        last = open_shop.comes()
+        assert not last.has_begun.wait(0.05)
+        open_shop.came[0].end()
+        assert last.has_begun.wait(WAIT_S)
+
+
+def test_who_finds_no_place_to_wait_is_told_how_many_there_are_and_when_to_come_again() -> None:
+    with shop() as open_shop:
+        open_shop.queue.places = AT_A_TIME + 1
+        for _ in range(AT_A_TIME + 1):
+            open_shop.comes()
+        with pytest.raises(ProblemError) as refused, open_shop.queue.admitted():
+            pytest.fail("nobody may compute here")
+        assert refused.value.name == "service-busy"
+        assert refused.value.headers == {"Retry-After": str(RETRY_AFTER_S)}
+        assert refused.value.detail == "3 requests compute or wait for their turn to, and no more than 3 may"
+
+
+def test_a_computation_that_fails_makes_room_like_any_other() -> None:
+    queue = ComputingQueue()
+    queue.places = 1
+    for _ in range(2):
+        with pytest.raises(ValueError, match="no tune"), queue.admitted():
+            raise ValueError("no tune")
+    with queue.admitted():
+        pass
+
+
+def test_a_queue_that_is_opened_again_is_the_same_with_other_places() -> None:
+    app = Flask("a shop")
+    first = open_computing_queue(app, None)
+    assert first.places is None
+    assert open_computing_queue(app, 7) is first
+    assert first.places == 7
