@@ -69,12 +69,14 @@ def bytes_of(document: Drawing, comments: tuple[str, ...]) -> bytes:
     # The library collects the classes it needs in a set, whose order is that of the hash seed.
     document.classes.classes = dict(sorted(document.classes.classes.items()))
     _unstamp(document)
-    text = io.StringIO()
+    file = io.BytesIO()
+    text = io.TextIOWrapper(file, encoding="ascii", newline="")
     for comment in comments:
         for line in textwrap.wrap(comment, _COMMENT_WIDTH):
             text.write(_COMMENT.format(dxf_text(line)))
     document.export_sections(TagWriter(text, write_handles=True, dxfversion=document.dxfversion))
-    return text.getvalue().encode("ascii")
+    text.detach()
+    return file.getvalue()
 
 
 def _unstamp(document: Drawing) -> None:

@@ -130,8 +130,12 @@ class WrittenEntities(EntitySection):
         self._add("POINT", "AcDbPoint", layer, " 10\n%s\n 20\n%s\n 30\n0.0\n", points_mm)
 
     def export_dxf(self, tagwriter: AbstractTagWriter) -> None:
-        """Write the section: ezdxf asks for it in its turn."""
-        tagwriter.write_str("".join(["  0\nSECTION\n  2\nENTITIES\n", *self._text, "  0\nENDSEC\n"]))
+        """Write the section: ezdxf asks for it in its turn, once."""
+        tagwriter.write_str("  0\nSECTION\n  2\nENTITIES\n")
+        for text in self._text:
+            tagwriter.write_str(text)
+        tagwriter.write_str("  0\nENDSEC\n")
+        self._text.clear()  # a document refers to itself: it may stay in memory long after it is thrown away
 
     def _add(self, kind: str, subclass: str, layer: str, shape: str, numbers: FloatArray) -> None:
         """Add one entity for each row of numbers, in the order in which they stand in the shape."""
@@ -139,5 +143,5 @@ class WrittenEntities(EntitySection):
         form = f"  0\n{kind}\n  5\n%X\n330\n{self._owner}\n100\nAcDbEntity\n  8\n{on_layer}\n100\n{subclass}\n{shape}"
         rows = as_repr(numbers.reshape(len(numbers), math.prod(numbers.shape[1:])))
         first = int(str(self._handles), _HEXADECIMAL)
-        self._text += [form % (first + place, *row) for place, row in enumerate(rows)]
+        self._text.append("".join(form % (first + place, *row) for place, row in enumerate(rows)))
         self._handles.reset(f"{first + len(rows):X}")

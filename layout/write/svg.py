@@ -1,5 +1,7 @@
 """The picture of a disc: what is cut, how it looks after forming, and what was found."""
 
+from xml.etree.ElementTree import tostring
+
 from layout.cut.plan import CutPlan
 from layout.write.laid_out import NOT_GOOD, LaidOut
 from layout.write.svg_disc import disc_area, layer_groups, working_edges
@@ -11,7 +13,7 @@ from layout.write.svg_page import describe, new_drawing, page_for
 from layout.write.svg_signs import index_flag, row_of_star_wheels, turning_arrow
 
 _ABOVE, _BELOW, _BETWEEN = 4.0, 4.5, 2.2  # gaps in hundredths of the page's width
-_HEAD = '<?xml version="1.0" encoding="UTF-8"?>\n'
+_HEAD = b'<?xml version="1.0" encoding="UTF-8"?>\n'
 
 
 def write_svg(plan: CutPlan, laid_out: LaidOut) -> bytes:
@@ -54,7 +56,7 @@ def write_svg(plan: CutPlan, laid_out: LaidOut) -> bytes:
     ):
         drawing.add(group)
     describe(drawing, *_described(plan, laid_out))
-    return f"{_HEAD}{drawing.tostring()}\n".encode()
+    return b"".join([_HEAD, tostring(drawing.get_xml(), encoding="utf-8"), b"\n"])
 
 
 def _described(plan: CutPlan, laid_out: LaidOut) -> tuple[str, str]:
