@@ -61,6 +61,7 @@ FIELDS_WITHOUT_UNIT = {
     **dict.fromkeys(("Within.ge", "Within.gt", "Within.le", "Within.lt"), "in the unit of the number they bound"),
 }
 
+PINNED = ("requirements.txt", "requirements-many.txt", "requirements-tests.txt")  # each holds the one before
 MACHINE_PATH = re.compile(r"(?<![\w.])/(?:home|Users|root|work|tmp)/\w|[A-Z]:\\Users|\.\./" + "shared")
 TOP_LEVEL = {"README.md", "DEVELOPERS.md", "pyproject.toml", "layout", "service", "tests", "docker"}
 
@@ -207,7 +208,7 @@ def test_no_file_names_a_place_of_one_machine() -> None:
     assert found == []
 
 
-@pytest.mark.parametrize("file_name", ["requirements.txt", "requirements-tests.txt"])
+@pytest.mark.parametrize("file_name", PINNED)
 def test_pinned_requirements_name_no_index_and_no_place(file_name: str) -> None:
     text = (TOP / "docker" / file_name).read_text()
 
@@ -216,15 +217,18 @@ def test_pinned_requirements_name_no_index_and_no_place(file_name: str) -> None:
 
 
 def test_the_tests_run_with_the_versions_that_run_the_service() -> None:
-    assert pins("requirements.txt").items() <= pins("requirements-tests.txt").items()
+    one, many, tests = (pins(file_name).items() for file_name in PINNED)
+
+    assert one <= many <= tests
 
 
 def test_every_dependency_of_the_project_is_pinned_to_a_version_it_allows() -> None:
     project = tomllib.loads((TOP / "pyproject.toml").read_text())
     runs = project["project"]["dependencies"] + project["dependency-groups"]["build"]
+    many = project["project"]["optional-dependencies"]["many"]
     tests = project["dependency-groups"]["tests"]
 
-    for file_name, wanted in (("requirements.txt", runs), ("requirements-tests.txt", runs + tests)):
+    for file_name, wanted in zip(PINNED, (runs, runs + many, runs + many + tests), strict=True):
         pinned = pins(file_name)
         for requirement in map(Requirement, wanted):
             assert requirement.specifier.contains(pinned[canonicalize_name(requirement.name)]), requirement.name
