@@ -3,6 +3,8 @@
 import json
 from typing import Any
 
+_WRITER = json.JSONEncoder(ensure_ascii=False, allow_nan=False)  # json.dumps makes one for every line
+
 
 def json_lines(record: dict[str, Any]) -> bytes:
     """The record as UTF-8 JSON, its fields in their order.
@@ -22,4 +24,4 @@ def _value(value: Any) -> str:
 
 
 def _json(value: Any) -> str:
-    return json.dumps(value, ensure_ascii=False, allow_nan=False)
+    return _WRITER.encode(value)
