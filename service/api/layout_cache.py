@@ -31,6 +31,7 @@ from service.settings import ServiceSettings, SettingsError
 log = logging.getLogger("discwright")
 
 SUFFIX = ".zip"
+PACKED_LEVEL = 1  # of 9: as quick as it gets; 13 % larger than by 6, which takes four times as long
 PART_SUFFIX = ".part"
 OWNER_ONLY = 0o700
 AT_HAND = 16  # layouts that a process keeps unpacked: about half a megabyte each; they are asked for again and again
@@ -240,7 +241,7 @@ def _packed(layout: KeptLayout) -> bytes:
             members[name] = source.text
     members |= {f"files/{name}": content for name, content in layout.files.items()}
     buffer = io.BytesIO()
-    with zipfile.ZipFile(buffer, "w", zipfile.ZIP_DEFLATED) as archive:
+    with zipfile.ZipFile(buffer, "w", zipfile.ZIP_DEFLATED, compresslevel=PACKED_LEVEL) as archive:
         for name, content in members.items():
             archive.writestr(name, content)
     return buffer.getvalue()
