@@ -15,7 +15,7 @@ from layout.cut.plan import Lettering
 from layout.cut.room import CLEAR_MM, Rooms
 from layout.cut.wording import Inscription
 from layout.mechanics.arrays import FloatArray, frozen_floats
-from layout.mechanics.lettering import strokes_mm
+from layout.mechanics.lettering import parted, strokes_mm
 
 # Heights of capitals, mm, tried from the first. ISO 3098 starts technical lettering at 1.8 mm; a laser's line
 # of 0.15 mm still leaves 1.2 mm legible (common practice); above 3 mm the lettering would crowd a small disc.
@@ -172,11 +172,11 @@ def _block(texts: tuple[str, ...], height_mm: float) -> _Block:
     """The lines of a block, which is centred on (0, 0)."""
     pitch_mm = height_mm * LINE_PITCH_HEIGHTS
     top_mm = ((len(texts) - 1) * pitch_mm - height_mm) / 2
-    lines = []
+    lines, points = [], []
     for place, text in enumerate(texts):
-        down_mm = np.array([0.0, top_mm - place * pitch_mm])
-        lines.append(tuple(frozen_floats(stroke + down_mm) for stroke in strokes_mm(text, height_mm)))
-    points = [np.concatenate(line) for line in lines]
+        strokes = strokes_mm(text, height_mm)
+        points.append(np.concatenate(strokes) + np.array([0.0, top_mm - place * pitch_mm]))
+        lines.append(parted(points[-1], map(len, strokes)))
     return _Block(
         strokes_mm=tuple(lines),
         low_mm=frozen_floats(np.array([of_line.min(axis=0) for of_line in points])),
