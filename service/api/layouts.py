@@ -13,7 +13,7 @@ from flask import Blueprint, Request, Response, request
 from layout.documents import Settings
 from layout.file_names import CUTTING_FILES, FILES, HEARING_FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
-from service.api.answers import ONLY_OWN_STYLES, json_response
+from service.api.answers import ONLY_OWN_STYLES, json_bytes_of_read, json_bytes_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
@@ -172,7 +172,8 @@ class LayoutTeller:
             response = self.layout(discs[0], reason)
             response.headers["Location"] = self.address(discs[0], None, reason)
         else:
-            response = json_response({"discs": [self._told(kept, reason) for kept in discs]})
+            told = {"discs": [self._told(kept, reason) for kept in discs]}
+            response = json_bytes_response(json_bytes_of_read(told))
             for kept in discs:  # each is a resource of its own: a list has several items (RFC 6573), no one location
                 response.headers.add("Link", f'<{self.address(kept, None, reason)}>; rel="item"')
         response.status_code = 201
@@ -204,7 +205,8 @@ class LayoutTeller:
         Nothing of it where the client says that it has it.
         """
         tag = self._tag(kept, "layout", reason)
-        response = json_response(None if _has_already(tag) else self._told(kept, reason))
+        told = None if _has_already(tag) else self._told(kept, reason)
+        response = json_bytes_response(json_bytes_of_read(told))
         response.set_etag(tag)
         return response
 
