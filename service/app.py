@@ -1,8 +1,9 @@
 """The web service: builds the Flask app and wires its parts."""
 
 import os
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from datetime import UTC, datetime
+from typing import Any
 
 from flask import Blueprint, Flask
 from prometheus_client import CollectorRegistry
@@ -58,6 +59,14 @@ from service.settings import ServiceSettings, settings_from
 OPENED = "discwright opened"
 
 
+class _App(Flask):
+    """The app. No view or hook of it is a coroutine, and Flask would look at each of ten for every request."""
+
+    def ensure_sync(self, func: Callable[..., Any]) -> Callable[..., Any]:
+        """The function as it is."""
+        return func
+
+
 def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner | None = None) -> Flask:
     """The service as a WSGI app. Made after a process has forked, never before: it opens the database.
 
@@ -75,7 +84,7 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
         start_logging(settings.work)
     parts = open_parts(settings)
     queue = Queue(settings.queue_url)
-    app = Flask("discwright", static_folder=None, template_folder=None)
+    app = _App("discwright", static_folder=None, template_folder=None)
     app.extensions[OPENED] = (parts.store, queue)  # what whoever made the app may close
     app.config["MAX_CONTENT_LENGTH"] = settings.limits.upload_bytes + 1  # one more, to see that it is too large
     counted = CollectorRegistry()

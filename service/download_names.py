@@ -3,6 +3,7 @@
 import re
 import unicodedata
 from dataclasses import dataclass
+from functools import lru_cache
 from urllib.parse import quote
 
 from layout.documents import Cutter, Movement
@@ -76,6 +77,7 @@ def content_disposition(disc: NamedDisc, file_name: str, *, how: str) -> str:
     return field
 
 
+@lru_cache(maxsize=256)  # titles and materials come again with each file of a disc
 def slug(text: str, most_characters: int) -> str:
     """The text in small ASCII letters, digits and single hyphens; empty where nothing is left."""
     plain = unicodedata.normalize("NFKD", text).encode("ascii", "ignore").decode().lower()

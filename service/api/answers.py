@@ -2,8 +2,10 @@
 
 import hashlib
 import json
+import re
 from typing import Any
 
+import orjson
 from flask import Request, Response
 
 from service.media_types import JSON_MEDIA_TYPE
@@ -11,6 +13,10 @@ from service.media_types import JSON_MEDIA_TYPE
 # Nothing the service gives may load or run anything; an SVG needs its own styles to be seen.
 NOTHING_LOADS = "default-src 'none'"
 ONLY_OWN_STYLES = "default-src 'none'; style-src 'unsafe-inline'"
+# How orjson writes numbers between 1e-9 and 1e-4; Python writes 1e-05 and 1e-06. They stand at the end of a line, as
+# nothing within a text does: that ends in a quotation mark.
+_SMALL = re.compile(rb"0\.0000\d+(?=,?\n)")
+_SMALLER = re.compile(rb"e-(\d)(?=,?\n)")
 
 
 def json_bytes(value: Any) -> bytes:
@@ -22,9 +28,28 @@ def json_bytes(value: Any) -> bytes:
     return (text + "\n").encode("utf-8", "backslashreplace")
 
 
+def json_bytes_of_read(value: Any) -> bytes:
+    """The same bytes in a twentieth of the time, of a value that was read from JSON: all its numbers are finite."""
+    try:
+        written = orjson.dumps(value, option=orjson.OPT_INDENT_2 | orjson.OPT_APPEND_NEWLINE)
+    except TypeError:  # half a surrogate pair, or a whole number of more than 64 bits
+        return json_bytes(value)
+    return _SMALL.sub(_as_python_writes, _SMALLER.sub(rb"e-0\1", written))
+
+
+def _as_python_writes(found: re.Match[bytes]) -> bytes:
+    is_the_end_of_a_larger_one = found.string[found.start() - 1 : found.start()].isdigit()
+    return found[0] if is_the_end_of_a_larger_one else repr(float(found[0])).encode()
+
+
 def json_response(value: Any, *, status: int = 200) -> Response:
     """An answer in JSON that is not kept by caches without asking."""
-    response = Response(json_bytes(value), status=status, content_type=JSON_MEDIA_TYPE)
+    return json_bytes_response(json_bytes(value), status=status)
+
+
+def json_bytes_response(content: bytes, *, status: int = 200) -> Response:
+    """The same of JSON that is written already."""
+    response = Response(content, status=status, content_type=JSON_MEDIA_TYPE)
     response.headers["Cache-Control"] = "no-cache"
     return response
 

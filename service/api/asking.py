@@ -29,6 +29,7 @@ log = logging.getLogger("discwright")
 
 NUL = "\0"
 CHALLENGE = 'Bearer realm="discwright"'  # RFC 6750 section 3
+BY_KEY = ("Authorization", "Cookie")  # fields of a request by which answers differ
 View = TypeVar("View", bound=Callable[..., Any])
 
 
@@ -139,7 +140,10 @@ def guard(app: Flask, parts: Parts, rates: Rates, clock: Callable[[], datetime] 
             for name, value in count.header_fields().items():
                 response.headers[name] = value
         if g.get("by_key", False):  # what one key is shown is not what another is
-            response.vary.update(("Authorization", "Cookie"))
+            if "Vary" in response.headers:
+                response.vary.update(BY_KEY)
+            else:
+                response.headers["Vary"] = ", ".join(BY_KEY)
         return response
 
 

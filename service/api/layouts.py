@@ -13,7 +13,7 @@ from flask import Blueprint, Request, Response, request
 from layout.documents import Settings
 from layout.file_names import CUTTING_FILES, FILES, HEARING_FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
-from service.api.answers import ONLY_OWN_STYLES, json_response
+from service.api.answers import ONLY_OWN_STYLES, json_bytes_of_read, json_bytes_response
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
@@ -32,6 +32,7 @@ from service.limits import Limits
 from service.media_types import JSON_MEDIA_TYPE, MEDIA_TYPES, MIDI_MEDIA_TYPE
 from service.parts import Parts
 
+NOT_MODIFIED = 304
 FINGERPRINT = re.compile(r"[0-9a-f]{16}")
 # What a POST can answer with, by media type; the first where the client does not mind.
 ANSWERS: dict[str, str | None] = {
@@ -75,10 +76,7 @@ def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Bluepr
     @describes(layouts.TELL)
     @open_on_loopback(Scope.ORDER)
     def tell_layout(fingerprint: str) -> Response:
-        kept = _found(desk, fingerprint)
-        response = teller.layout(kept, reason_asked())
-        response.make_conditional(request)
-        return response
+        return _conditional(teller.layout(_found(desk, fingerprint), reason_asked()), request)
 
     @routes.get("/<fingerprint>/<file_name>")
     @describes(layouts.FILE)
@@ -90,9 +88,7 @@ def layout_routes(desk: LayoutDesk, parts: Parts, shelf: HearingShelf) -> Bluepr
         cutter = kept.inputs.read().cutter
         if file_name not in files_for(cutter):
             raise _no_such_file(file_name, f"a layout for {cutter.id}, a {cutter.kind},", files_for(cutter))
-        response = teller.file(kept, file_name, reason_asked())
-        response.make_conditional(request)
-        return response
+        return _conditional(teller.file(kept, file_name, reason_asked()), request)
 
     _add_what_was_brought(routes, desk, teller, limits)
     _add_hearings(routes, desk, shelf)
@@ -172,7 +168,8 @@ class LayoutTeller:
             response = self.layout(discs[0], reason)
             response.headers["Location"] = self.address(discs[0], None, reason)
         else:
-            response = json_response({"discs": [self._told(kept, reason) for kept in discs]})
+            told = {"discs": [self._told(kept, reason) for kept in discs]}
+            response = json_bytes_response(json_bytes_of_read(told))
             for kept in discs:  # each is a resource of its own: a list has several items (RFC 6573), no one location
                 response.headers.add("Link", f'<{self.address(kept, None, reason)}>; rel="item"')
         response.status_code = 201
@@ -204,7 +201,10 @@ class LayoutTeller:
         Nothing of it where the client says that it has it.
         """
         tag = self._tag(kept, "layout", reason)
-        response = json_response(None if _has_already(tag) else self._told(kept, reason))
+        if _has_already(tag):
+            response = json_bytes_response(b"", status=NOT_MODIFIED)
+        else:
+            response = json_bytes_response(json_bytes_of_read(self._told(kept, reason)))
         response.set_etag(tag)
         return response
 
@@ -231,8 +231,10 @@ class LayoutTeller:
         if file_name in CUTTING_FILES and not kept.good_to_cut and not marked:
             raise _kept_back(kept, file_name)
         tag = self._tag(kept, file_name, reason)
-        content = b"" if _has_already(tag) else self._content(kept, file_name, reason)
-        response = Response(content, content_type=MEDIA_TYPES[file_name])
+        if _has_already(tag):
+            response = Response(status=NOT_MODIFIED, content_type=MEDIA_TYPES[file_name])
+        else:
+            response = Response(self._content(kept, file_name, reason), content_type=MEDIA_TYPES[file_name])
         is_picture = file_name == "disc.svg"
         if is_picture:
             response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
@@ -259,9 +261,17 @@ class LayoutTeller:
 def _has_already(tag: str) -> bool:
     """Whether the client says that it has what it reads: it is answered 304 then, with a head alone.
 
-    A tune that is posted is answered whole, whatever the client has.
+    A tune that is posted is answered whole, whatever the client has. Who asks by If-Match too is left to the library.
     """
-    return request.method in SAFE_METHODS and request.if_none_match.contains(tag)
+    is_read = request.method in SAFE_METHODS and "If-Match" not in request.headers
+    return is_read and request.if_none_match.contains(tag)
+
+
+def _conditional(response: Response, asked: Request) -> Response:
+    """What is read, as its conditions have it: 304 where it is known already that the client has it."""
+    if response.status_code != NOT_MODIFIED:
+        response.make_conditional(asked)
+    return response
 
 
 def _brought(kept: KeptLayout, file: tuple[str, bytes, str], asked: Request) -> Response:

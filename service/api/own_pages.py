@@ -22,6 +22,8 @@ PASSED_ON = ("Forwarded", "X-Forwarded-For", "X-Forwarded-Host", "X-Real-IP", "V
 
 def cookie_of(asked: Request, public_url: str | None) -> str | None:
     """The secret in the cookie of a browser, or None."""
+    if "Cookie" not in asked.headers:  # as of most programs
+        return None
     return asked.cookies.get(_cookie_name(asked, public_url)) or None
 
 

@@ -26,8 +26,10 @@ def name_requests(app: Flask) -> None:
 
 def request_id() -> str:
     """The id of the request at hand: as the client chose it, else made here; the same each time."""
-    if NOTED not in request.environ:
+    environ = request.environ
+    noted: str | None = environ.get(NOTED)
+    if noted is None:
         chosen = request.headers.get(FIELD, "")
-        named = chosen if CHOSEN.fullmatch(chosen) else f"req_{secrets.token_hex(RANDOM_BYTES)}"
-        request.environ[NOTED] = named
-    return str(request.environ[NOTED])
+        noted = chosen if CHOSEN.fullmatch(chosen) else f"req_{secrets.token_hex(RANDOM_BYTES)}"
+        environ[NOTED] = noted
+    return noted

@@ -2,7 +2,8 @@
 
 import json
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
+from functools import cache
 from typing import Any, TypeVar, get_args
 
 from flask import Request
@@ -86,6 +87,9 @@ def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
     operation = operation_asked(asked)
     if operation is not None and operation.query is not model:
         raise LookupError(f"{operation.id} is not described as asking by {model.__name__}")
+    if not asked.args:
+        without: ModelT = _without_arguments(model)
+        return without
     known = f"known are {', '.join(model.model_fields)}" if model.model_fields else "none are taken"
     for name, values in asked.args.lists():
         if name not in model.model_fields:
@@ -94,14 +98,24 @@ def read_arguments(asked: Request, model: type[ModelT]) -> ModelT:
             raise _invalid(name, f"the parameter {name} comes {len(values)} times; give it once")
         if NUL in values[0]:
             raise _invalid(name, f"{name} is {values[0][:100]!r}: {HOLDS_NUL}")
-    written = {name: _value_of(text, model.model_fields[name].annotation) for name, text in asked.args.items()}
+    return _arguments_checked(model, asked.args)
+
+
+@cache
+def _without_arguments(model: type[ModelT]) -> ModelT:
+    """What a query without parameters says: frozen, so that all requests can have the same one."""
+    return _arguments_checked(model, {})
+
+
+def _arguments_checked(model: type[ModelT], given: Mapping[str, str]) -> ModelT:
+    written = {name: _value_of(text, model.model_fields[name].annotation) for name, text in given.items()}
     try:
         return model.model_validate_json(json.dumps(written), strict=True)
     except ValidationError as error:
         fault = error.errors(include_url=False)[0]
         name = str(fault["loc"][0])
         message = NEEDED.get(fault["type"]) or fault["msg"].removeprefix("Value error, ")
-        raise _invalid(name, f"{name} is {asked.args.get(name, '')[:100]!r}: {message}") from error
+        raise _invalid(name, f"{name} is {given.get(name, '')[:100]!r}: {message}") from error
 
 
 def _value_of(text: str, annotation: Any) -> Any:

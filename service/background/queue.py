@@ -68,11 +68,13 @@ class Queue:
         """The next id; None where there is none within about that time. Nobody else gets it.
 
         Args:
-            within_s: Seconds to wait; a server is asked once, for at most a second.
+            within_s: Seconds to wait; a server is asked once, for at most a second. For 0 nobody waits.
 
         Raises:
             QueueAwayError: The queue does not answer.
         """
+        if not self._polls and within_s <= 0 and self.length() == 0:  # a server would be waited for
+            return None
         last_s = time.monotonic() + within_s
         while True:
             message: bytes | None = self._do(lambda storage: storage.dequeue())

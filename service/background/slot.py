@@ -91,10 +91,12 @@ class Slot:
         found = shared.sweep.next_found()
         if found is not None:
             return found
+        # Where more orders wait that have no message, nobody waits for a message; one that is there has its turn.
+        wait_s = 0.0 if shared.sweep.may_find_more else RECEIVE_S
         try:
-            received = shared.queue.receive(RECEIVE_S)
+            received = shared.queue.receive(wait_s)
         except QueueAwayError:
-            shared.stopping.wait(PAUSE_S)
+            shared.stopping.wait(min(wait_s, PAUSE_S))
             received = None
         if received is None:
             shared.sweep.sweep_on()

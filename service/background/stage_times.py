@@ -56,11 +56,13 @@ def note_stage_times(store: Store, took_s: Mapping[str, float]) -> None:
     for stage, seconds in took_s.items():
         added[_name(stage, _class_of(seconds))] = 1
         added[_name(stage, TOTAL)] = round(seconds * US_PER_S)
-    with store.writing() as session:
-        for name, value in sorted(added.items()):  # in one order, so that two workers cannot lock each other
-            new = insert_into(session, Counter).values(name=name, value=value)
+    # In one order, so that two workers cannot lock each other.
+    rows = [{"name": name, "value": value} for name, value in sorted(added.items())]
+    if rows:
+        with store.writing() as session:
+            new = insert_into(session, Counter)
             more = {"value": Counter.value + new.excluded.value}
-            session.execute(new.on_conflict_do_update(index_elements=["name"], set_=more))
+            session.execute(new.on_conflict_do_update(index_elements=["name"], set_=more), rows)
 
 
 def stage_times(session: Session) -> tuple[StageTimes, ...]:

@@ -9,7 +9,9 @@ from service.orders.taking import waiting
 from service.store.store import Store
 
 OFFERS_OF_A_SLOT = 8  # orders found at a time for each slot: few, for other workers find the same ones
-LEAST_S = 1.0  # s; between two sweeps, however much there is to find
+# s; between two looks, however much there is to find. No slot plans eight orders sooner: who looks again before has
+# found what others took, and shall not do nothing but look.
+LEAST_S = 0.05
 
 log = logging.getLogger(__name__)
 
@@ -40,14 +42,17 @@ class Sweep:
         with self._sweeping:
             self._look()
 
+    @property
+    def may_find_more(self) -> bool:
+        """Whether the last look found as much as it may, and all of it is taken: a queue that was lost."""
+        return self._is_full and not self._found and time.monotonic() - self._swept_at_s >= LEAST_S
+
     def sweep_on(self) -> None:
-        """Look again where the last look found as much as it may and all of it is taken: a queue that was lost."""
-        if self._is_full and not self._found and self._sweeping.acquire(blocking=False):
-            try:
-                if time.monotonic() - self._swept_at_s >= LEAST_S:
+        """Look again where more may be found; who comes while another slot looks has what that one finds."""
+        if self.may_find_more:
+            with self._sweeping:
+                if self.may_find_more:
                     self._look()
-            finally:
-                self._sweeping.release()
 
     def next_found(self) -> str | None:
         """An order to take, None where there is none; each is offered to one slot."""

@@ -50,8 +50,12 @@ def place_order(store: Store, keeper: FileKeeper, asker: Asker, asked: AskedOrde
         check_hook(session, asker, asked.hook_id)
         session.add(order)
         session.flush()
-        for digest, what in zip(digests, ("tune", "document", "document", "document"), strict=True):
-            hold(session, Hold(digest=digest, owner_id=asker.owner_id, holder_id=order.id, what=what))
+        kinds = ("tune", "document", "document", "document")
+        held = [
+            Hold(digest=digest, owner_id=asker.owner_id, holder_id=order.id, what=what)
+            for digest, what in zip(digests, kinds, strict=True)
+        ]
+        hold(session, *held)
         data = {"reference": asked.reference, "movement": {"id": read.movement.id, "revision": read.movement_revision}}
         add_event(session, order, EventType.RECEIVED, at=now, by=asker.title, data=data)
         view = order_view(session, order)

@@ -144,9 +144,8 @@ def publish(store: Store, taken: Taken, planned: PlannedOrder) -> bool:
         if not change(session, order, state, at=now, columns=columns):
             return False
         session.add(plan)
-        session.flush()
-        for file in planned.files:
-            write_file(session, order, revision, file)
+        hold(session, *(_held_for(order, file) for file in planned.files))
+        session.add_all(_row_of(order, revision, file) for file in planned.files)
         add_event(session, order, EventType.PLANNED, at=now, data={"revision": revision, "state": state.value})
         data: dict[str, Any] = {"revision": revision, **({} if reason is None else {"reason": reason})}
         add_event(session, order, EventType(f"order.{state.value}"), at=now, by=plan.released_by, data=data)
@@ -185,24 +184,6 @@ def waiting(store: Store, *, most: int) -> list[str]:
         return list(session.scalars(asked))
 
 
-def write_file(session: Session, order: Order, revision: int, file: PlannedFile) -> None:
-    """Write down one file of a plan, and that the order's owner holds it."""
-    hold(session, Hold(digest=file.digest, owner_id=order.owner_id, holder_id=order.id, what="result"))
-    session.add(
-        PlanFile(
-            order_id=order.id,
-            revision=revision,
-            disc=file.disc,
-            name=file.name,
-            digest=file.digest,
-            byte_count=file.byte_count,
-            media_type=file.media_type,
-            saved_as=file.saved_as,
-            is_for_cutting=file.is_for_cutting,
-        )
-    )
-
-
 _LET_GO: Mapping[str, Any] = {"taken_by": None, "lease_until": None}
 
 
@@ -216,6 +197,24 @@ def _taken(order: Order) -> Taken:
         settings_digest=order.settings_digest,
         not_good=order.despite_findings,
         is_test=order.is_test,
+    )
+
+
+def _held_for(order: Order, file: PlannedFile) -> Hold:
+    return Hold(digest=file.digest, owner_id=order.owner_id, holder_id=order.id, what="result")
+
+
+def _row_of(order: Order, revision: int, file: PlannedFile) -> PlanFile:
+    return PlanFile(
+        order_id=order.id,
+        revision=revision,
+        disc=file.disc,
+        name=file.name,
+        digest=file.digest,
+        byte_count=file.byte_count,
+        media_type=file.media_type,
+        saved_as=file.saved_as,
+        is_for_cutting=file.is_for_cutting,
     )
 
 

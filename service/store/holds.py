@@ -9,7 +9,7 @@ noted anew is either spared or, once the sweep is through, written anew.
 
 import hashlib
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from datetime import timedelta
 
 from sqlalchemy import delete, exists, select
@@ -57,12 +57,13 @@ class FileKeeper:
 
         def noting(session: Session) -> None:
             now = self._store.now(session)
-            for digest, byte_count in sorted(sizes.items()):  # in one order, so that two keepers cannot lock each other
-                row = {"digest": digest, "byte_count": byte_count, "created_at": now}
-                noted = insert_into(session, StoredFile).values(row)
-                session.execute(noted.on_conflict_do_update(index_elements=["digest"], set_={"created_at": now}))
+            # In one order, so that two keepers cannot lock each other.
+            rows = [{"digest": digest, "byte_count": size, "created_at": now} for digest, size in sorted(sizes.items())]
+            noted = insert_into(session, StoredFile)
+            session.execute(noted.on_conflict_do_update(index_elements=["digest"], set_={"created_at": now}), rows)
 
-        self._store.again(noting)
+        if sizes:
+            self._store.again(noting)
         return [self._files.put(content) for content in contents]
 
     def read(self, digest: str) -> bytes:
@@ -70,10 +71,10 @@ class FileKeeper:
         return self._files.read(digest)
 
 
-def hold(session: Session, held: Hold) -> None:
-    """Hold a file that was kept; holding it again changes nothing."""
-    row = {"digest": held.digest, "owner_id": held.owner_id, "holder_id": held.holder_id, "what": held.what}
-    session.execute(insert_into(session, FileHold).values(row).on_conflict_do_nothing())
+def hold(session: Session, *holds: Hold) -> None:
+    """Hold files that were kept; holding one again changes nothing."""
+    if holds:
+        session.execute(insert_into(session, FileHold).on_conflict_do_nothing(), [asdict(one) for one in holds])
 
 
 def let_go(session: Session, *, holder_id: str, what: str | None = None) -> None:

@@ -7,8 +7,10 @@ from collections.abc import Iterator
 from dataclasses import replace
 
 import pytest
+from hypothesis import example, given
+from hypothesis import strategies as st
 
-from service.logs import BLOT, forget, start_logging, tell, telling, without_secrets
+from service.logs import BLOT, SECRETS, forget, start_logging, tell, telling, without_secrets
 from service.settings import WorkSettings
 
 log = logging.getLogger("service.a_test")
@@ -100,3 +102,20 @@ def test_lines_for_people_end_with_what_they_are_about(root: logging.Logger) -> 
 def test_secrets_are_blotted_out_by_their_form(text: str, blotted: str) -> None:
     assert BLOT == "…"
     assert without_secrets(text) == blotted
+
+
+# Of what secrets begin with or stand after, and of letters they are made of.
+PIECES = ("dw_", "whsec_", "Bearer ", "BASIC ", "cookie: ", "/sign-in/", "/proofs/", "/proof/", "://", "u:p@", "?", "&",
+          " token", "Password", "=", "a", "b1C2d3E4", ".", " ", "\n", "é")  # fmt: skip
+
+
+@given(pieces=st.lists(st.sampled_from(PIECES), max_size=8))
+@example(pieces=["BASIC ", "b1C2d3E4"])
+@example(pieces=["cookie: ", "a"])
+def test_a_text_that_is_not_searched_for_secrets_has_none(pieces: list[str]) -> None:
+    text = "".join(pieces)
+    searched = text
+    for secret in SECRETS:
+        searched = secret.sub(BLOT, searched)
+
+    assert without_secrets(text) == searched

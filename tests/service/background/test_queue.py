@@ -11,7 +11,7 @@ from pathlib import Path
 
 import pytest
 
-from service.background.queue import Queue, QueueAwayError
+from service.background.queue import READ_TIMEOUT_S, Queue, QueueAwayError
 from tests.service.conftest import new_database
 
 CARRIERS = ("sqlite", "postgresql", "redis")
@@ -68,6 +68,13 @@ def test_ids_come_out_once_and_in_order(queue: Queue) -> None:
     assert sent == [True] * 5
     assert queue.length() == 5
     assert [queue.receive(0) for _ in range(6)] == [*(f"order_{number}" for number in range(5)), None]
+
+
+def test_who_does_not_wait_is_told_at_once_that_there_is_no_message(queue: Queue) -> None:
+    begun_s = time.monotonic()
+
+    assert queue.receive(0) is None
+    assert time.monotonic() - begun_s < READ_TIMEOUT_S / 2
 
 
 def test_another_process_finds_what_was_sent(queue: Queue, url: str) -> None:

@@ -7,6 +7,7 @@ import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import replace
+from datetime import timedelta
 from pathlib import Path
 
 import pytest
@@ -20,7 +21,7 @@ from service.orders import taking
 from service.orders.states import State
 from service.parts import Parts
 from service.store.tables import Order
-from tests.faults.ordering import PlansHere, assert_planned_once, look, place, tune_called
+from tests.faults.ordering import PlansHere, assert_planned_once, look, place, states, tune_called
 from tests.service.shop import TUNE, open_shop
 
 PLANNER = "tests.faults.planner"
@@ -102,6 +103,42 @@ def test_an_order_whose_message_is_lost_is_found_by_the_sweep(shop: Parts, monke
             wait_for_state(shop, order_id, State.READY)
 
     assert {look(shop, order_id).attempt for order_id in order_ids} == {1}
+
+
+def test_orders_whose_messages_are_lost_are_planned_without_waiting_for_one_between(
+    shop: Parts, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
+    # Twenty: two looks find as many as they may, the third what is left. Each longer than the least time between looks.
+    order_ids = [place(shop, tune_called(f"do:sleep 0.02; {number}")) for number in range(20)]
+    waited_s: dict[int, set[float]] = {}  # for a message, by how many orders were still to be taken
+    receive = Queue.receive
+
+    def watched(queue: Queue, within_s: float) -> str | None:
+        waited_s.setdefault(states(shop, order_ids)["received"], set()).add(within_s)
+        return receive(queue, within_s)
+
+    monkeypatch.setattr(Queue, "receive", watched)
+
+    with at_work(shop, sweep_s=3600):
+        wait_for(lambda: states(shop, order_ids)["ready"] == 20)
+
+    assert {left: waits for left, waits in waited_s.items() if 0 < left < 20} == {12: {0.0}, 4: {0.0}}
+
+
+def test_a_message_has_its_turn_among_orders_whose_messages_are_lost(shop: Parts) -> None:
+    lost_ids = [place(shop, tune_called(f"do:sleep 0.02; {number}")) for number in range(40)]
+    with shop.store.writing() as session:
+        long_ago = shop.store.now(session) - timedelta(seconds=taking.WAITS_TOO_LONG_S)
+        session.execute(update(Order).where(Order.id.in_(lost_ids)).values(updated_at=long_ago))
+    last_id = place(shop, tune_called("Harvest"))
+    send(shop, last_id)
+
+    with at_work(shop, sweep_s=3600):
+        wait_for_state(shop, last_id, State.READY)
+        left = states(shop, lost_ids)["received"]
+
+    assert left > 0
 
 
 def test_orders_are_planned_while_the_queue_is_away(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
