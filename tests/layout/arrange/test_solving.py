@@ -1,0 +1,13 @@
+from layout.arrange.budget import Budget
+from layout.arrange.solving import Solved, Solving
+from tests.layout.arrange.by_hand import Asked, problem_with
+
+
+def test_a_part_not_followed_in_all_its_states_is_still_chosen_better_than_by_hand() -> None:
+    # By hand the heaviest comes first, and leaves room for neither of the two beside it.
+    plucks = [Asked(at_ms=at_ms, worth=worth, nudge_ms=0) for at_ms, worth in ((1000, 10), (1060, 15), (1120, 10))]
+
+    solved = Solving(problem_with(plucks)).together(Budget(states=0))
+
+    assert isinstance(solved, Solved)
+    assert (solved.spots, solved.worth, solved.bound) == ((0, 2), 20, 20)
