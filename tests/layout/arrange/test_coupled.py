@@ -56,3 +56,9 @@ def test_a_choice_is_worth_its_plucks_less_what_ringing_teeth_cost() -> None:
     assert worth_of(problem, [0, 1, 2]) == 100 + 80 + 100
     assert worth_of(problem, [0, 2]) == 200
     assert worth_of(problem, []) == 0
+
+
+def test_plucks_that_no_track_plays_are_worth_nothing() -> None:
+    found = coupled(problem_with([Asked(at_ms=1000, tracks=())]))
+
+    assert (found.worth, found.bound) == (0, 0)
