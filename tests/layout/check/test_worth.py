@@ -224,3 +224,12 @@ def test_the_worths_of_all_tracks_at_once_are_those_of_each(arcs: dict[str, Any]
     assert reaches_unsure_mm(disc).tolist() == [reach_unsure_mm(disc, 0), reach_unsure_mm(disc, 1), 0.0]
     assert reach_unsure_mm(disc, 1) > 0
     assert reaches_unsure_mm(disc_of(movement_with(), [(1, 1.0)])).tolist() == [0.0, 0.0, 0.0]
+
+
+def test_the_measured_arcs_of_a_wheel_may_be_off_together() -> None:
+    wheel = {"engagement_arc_mm": worth(3.2, 0.3), "release_arc_mm": worth(1.0, 0.2), "thickness_mm": 0.5}
+    own = {"tracks/0/engagement_arc_mm": worth(3.2, 0.1), "tracks/0/release_arc_mm": 1.0}
+    disc = disc_of(movement_with({"star_wheel": wheel, **own}), [(1, 1.0)])
+
+    # Track 1 has arcs of its own, of which one is measured.
+    assert [reach_unsure_mm(disc, track) for track in (0, 1)] == [0.1, pytest.approx(0.3 + 0.2)]
