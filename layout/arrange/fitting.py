@@ -45,7 +45,7 @@ def _put_down(fitting: "_Fitting", problem: Problem, plucks: IntArray, wanted: s
     others = plucks[~must]
     heaviest = np.array([_heaviest(problem, pluck) for pluck in others.tolist()], dtype=np.int64)
     extra = problem.parent[others] != NO_PLUCK
-    kept = np.isin(others, problem.pluck[list(wanted)]) if wanted else np.zeros(len(others), dtype=np.bool_)
+    kept = np.isin(others, problem.pluck[list(wanted)])
     for pluck in others[np.lexsort((others, -heaviest, ~kept, extra))].tolist():
         if fitting.looks > MOST_LOOKS_TO_FIT:
             break

@@ -121,7 +121,6 @@ class StrikeWay:
         if not self._put(begin, changed.copy()):
             return False
         touched.update(reckoned_on)
-        touched.discard(NO_STRIKE)
         return True
 
     def _put(self, begin: int, changed: IntArray) -> bool:

@@ -1,6 +1,7 @@
 import numpy as np
 from hypothesis import given, settings
 
+from layout.arrange.budget import LOOKS_TO_FIT, Budget
 from layout.arrange.fitting import fitted
 from layout.arrange.problem import Problem
 from tests.layout.arrange.by_hand import Asked, beside, drive_of, problem_with
@@ -42,6 +43,18 @@ def test_an_extra_pluck_is_put_down_only_with_its_own() -> None:
     plucks = [Asked(at_ms=1000, worth=10), Asked(at_ms=1030, worth=11), Asked(at_ms=2000, worth=50, parent=0)]
 
     assert put_down(problem_with(plucks)) == [1]
+
+
+def test_every_pluck_tried_takes_its_looks_and_the_drive_more_for_what_it_looks_at() -> None:
+    plucks = [Asked(at_ms=1000 * place, nudge_ms=0) for place in range(3)] + [Asked(at_ms=2010, nudge_ms=0)]
+    alone, driven = (problem_with(plucks, drive=drive) for drive in (None, drive_of((60,), 10, 100)))
+    budgets = [Budget(), Budget()]
+
+    for problem, budget in zip((alone, driven), budgets, strict=True):
+        # The last is tried too, and has no room.
+        assert fitted(problem, np.arange(4), (), budget) == (0, 1, 2)
+
+    assert [budget.looks_spent for budget in budgets] == [4 * LOOKS_TO_FIT] * 2  # a few loads are less than a look
 
 
 def test_webs_and_loads_are_kept() -> None:

@@ -38,6 +38,16 @@ def test_the_teeth_of_one_track_add_up() -> None:
     assert drive.widest_ns == 10
 
 
+def test_plucks_of_one_track_looked_at_together_weigh_what_each_weighs() -> None:
+    drive = Drive(lifts=((Lift(load=100, window_ns=10), Lift(load=60, window_ns=4)), ()), limit=1)
+    before_ns = np.array([-1, 0, 1, 3, 4, 5, 9, 10, 11])
+
+    # 100 and 60 less a tenth and a quarter of them by nanosecond; 0 before the window and after the release.
+    assert drive.loads_of(0, before_ns).tolist() == [0, 160, 90 + 45, 70 + 15, 60, 50, 10, 0, 0]
+    assert drive.loads(np.zeros(9, dtype=np.int64), before_ns).tolist() == drive.loads_of(0, before_ns).tolist()
+    assert drive.loads_of(1, before_ns).tolist() == [0] * 9
+
+
 def test_the_load_integrates_to_half_of_peak_and_window() -> None:
     # Work of a straight spring: ∫ u du = q²/2, so the mean over the window is half the peak.
     drive = drive_of((100_000,), window_ms=1, limit=1)

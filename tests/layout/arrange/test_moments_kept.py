@@ -70,6 +70,19 @@ def test_close_tracks_push_each_other_to_either_side() -> None:
     assert moments_kept(before, [0, 1], {0: 0, 1: 1003 * MS}) == Moments(earliest_ns={0: 998 * MS, 1: 1003 * MS})
 
 
+def test_close_tracks_push_each_other_where_the_stretch_lies_before_the_inner_one() -> None:
+    # The outer one may sound 40 ms before the inner or earlier, or from 5 before on; each is asked 2 ms clear of that.
+    def asked(outer_ms: float) -> Problem:
+        outer, inner = Asked(at_ms=outer_ms, tracks=(1,)), Asked(at_ms=1000)
+        return problem_with([outer, inner], least_ms=(1, 1), besides=(beside(-40, -5),))
+
+    before = moments_kept(asked(958), [0, 1], {0: 958 * MS, 1: 0})
+    after = moments_kept(asked(997), [0, 1], {0: 0, 1: 1000 * MS})
+
+    assert before == Moments(earliest_ns={0: 958 * MS, 1: 998 * MS})
+    assert after == Moments(earliest_ns={0: 995 * MS, 1: 1000 * MS})
+
+
 def test_an_overrun_over_two_tracks_says_so() -> None:
     # Track 0 pushes its second pluck to 1000, and that pushes the outer one, asked 42 after 978, to 1040: past 1030.
     problem = problem_with(

@@ -13,8 +13,10 @@ from layout.arrange.playing import Playing, played
 from layout.arrange.problem import Problem
 from layout.arrange.searching import Found, Way, search
 from layout.arrange.solving import Solved, Solving
+from layout.arrange.spreading import with_spread_chords
 from tests.layout.arrange.by_hand import MS, Asked, beside, drive_of, problem_with
 from tests.layout.arrange.random_problems import problem_of
+from tests.layout.arrange.test_spreading import chord_on
 
 # One tooth is all the drive carries, over 50 ms. Track 1 needs 100 ms, and its two plucks are 88 ms apart.
 DRIVE = drive_of([1000, 1000], window_ms=50, limit=1000)
@@ -154,3 +156,16 @@ def test_a_choice_that_need_not_be_nudged_is_told_too_heavy_nowhere_and_so_it_pl
         stood, moved = stood + ("played" not in vars(playing)), moved + ("played" in vars(playing))
         assert too_heavy == played(problem, found.spots).too_heavy
     assert min(stood, moved) >= 50
+
+
+def test_a_chord_is_played_no_wider_than_it_must_be() -> None:
+    # 100 + 100/3 where it is spread by 10 ms either way, rounded up: the second step, of 20, is not needed.
+    problem = with_spread_chords(chord_on(limit=134))
+    widest = tuple(np.flatnonzero(problem.spread == problem.spread.max()).tolist())
+
+    found = played(problem, widest)
+
+    assert problem.spread.max() == 2
+    assert problem.spread[list(found.spots)].tolist() == [1, 1, 1]
+    assert [found.at_ns[spot] for spot in found.spots] == [990 * MS, 1000 * MS, 1010 * MS]
+    assert found.too_heavy == ()

@@ -147,6 +147,14 @@ def test_the_worth_of_several_discs_counts_together() -> None:
     assert (found.way, found.kept, [solved.worth for solved in found.solved]) == (way(0), 20, [10, 10])
 
 
+def test_one_disc_is_arranged_alone_however_many_the_settings_ask_for() -> None:
+    notes: list[Note] = [(0.0, "C4"), (10.0, "D4"), (20.0, "C4")]
+
+    alone = arranged(notes, discs=2)
+
+    assert played(alone) == played(arranged(notes)) == [(0.0, 1), (10.0, 2), (20.0, 1)]
+
+
 # A budget that ends.
 
 CROWDED = comb_with(

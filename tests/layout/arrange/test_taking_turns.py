@@ -75,6 +75,14 @@ def test_a_tooth_that_loads_the_disc_too_much_is_not_taken() -> None:
     assert tracks_taken(carried, [0, 2]) == [1, 2]
 
 
+def test_a_tooth_no_longer_taken_loads_the_disc_no_more() -> None:
+    # All at once, 90 are carried: 45 + 20 + 10 once the first has moved, 45 + 25 + 10 then; with 60 for 10 no more.
+    plucks = [Asked(at_ms=0, tracks=(0, 1)), Asked(at_ms=0, tracks=(2, 3)), Asked(at_ms=0, tracks=(4, 5))]
+    problem = problem_with(plucks, least_ms=(100, 90) * 3, drive=drive_of((40, 45, 20, 25, 10, 60), 10, 90))
+
+    assert tracks_taken(problem, [0, 2, 4]) == [1, 3, 4]
+
+
 def test_nothing_takes_no_turns() -> None:
     assert taking_turns(problem_with([]), [], {}) == ()
 

@@ -185,6 +185,14 @@ def test_music_longer_than_the_turn_is_an_error_with_its_length() -> None:
     assert "it fits the turn at 0.980 times as written" in finding.remedy
 
 
+def test_notes_past_the_turn_are_counted() -> None:
+    late = (LeftOut(note=1, reason="past-the-turn"), LeftOut(note=2, reason="past-the-turn"))
+
+    [finding] = music_fits_the_turn(arrangement_of([(1, 60.0)], late), disc_of(PLAIN, [(1, 0.0)]))
+
+    assert "so 2 notes fall past the turn." in finding.message
+
+
 @pytest.mark.parametrize("length_s", [50.001, 58.7501, 77.7777])
 def test_the_factor_named_makes_the_music_fit(length_s: float) -> None:
     arrangement = arrangement_of([(1, length_s)], (LeftOut(note=1, reason="past-the-turn"),))

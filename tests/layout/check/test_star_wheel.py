@@ -224,7 +224,7 @@ def test_the_shipped_cutters_can_make_the_shipped_movements(movement: Movement, 
 def test_a_slit_or_slot_below_the_cutters_least_is_found(movement: Movement, what: str) -> None:
     [finding] = slits_are_wide_enough(disc_of(movement, [(1, 10.0)], cutter_with({"min_slot_mm": 1.5})))
 
-    assert finding.code is Code.SLIT_TOO_NARROW
+    assert (finding.code, finding.limit) == (Code.SLIT_TOO_NARROW, 1.5)
     assert what in finding.message
 
 
@@ -249,7 +249,7 @@ def test_a_relief_below_the_cutters_least_is_found() -> None:
 def test_a_hole_below_the_cutters_least_is_found(changes: dict[str, Any], message: str) -> None:
     [finding] = holes_are_large_enough(disc_of(movement_with(changes), PLUCKS))
 
-    assert finding.code is Code.HOLE_TOO_SMALL
+    assert (finding.code, finding.limit) == (Code.HOLE_TOO_SMALL, 0.4)
     assert finding.message.startswith(message)
 
 

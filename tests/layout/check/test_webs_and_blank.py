@@ -77,6 +77,7 @@ def test_a_crowded_disc_lists_the_thinnest_webs_and_counts_the_rest() -> None:
 
     assert len(findings) == 201
     assert "300 pairs of openings are too near" in findings[-1].message
+    assert (findings[-1].measured, findings[-1].limit) == (300, 200)
 
 
 def outlines(disc: Disc) -> list[shapely.Geometry]:

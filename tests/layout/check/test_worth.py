@@ -156,6 +156,20 @@ def test_a_ring_near_its_least_metal_says_what_that_is_worth() -> None:
     assert "It holds by 2.90" in holds.message
 
 
+def test_a_ring_with_nothing_left_holds_or_fails_by_all_of_its_limit() -> None:
+    # Openings run right round. What is cut is all of it: a tenth of the depth more or less is 10 % of the ring.
+    movement = movement_with({"projection/depth_mm": worth(1.41, 0.141)})
+    crowded = [(1, 0.3 * place) for place in range(200)]
+
+    [holds] = metal_holds_along_rays_and_rings(disc_of(movement, crowded, cutter_asking(0.0, 0.0)))
+    [fails] = metal_holds_along_rays_and_rings(disc_of(movement, crowded, cutter_asking(0.0, 0.04)))
+
+    assert (holds.code, holds.measured, holds.limit) == (Code.MARGIN_UNSURE, 0, 0)
+    assert holds.message.endswith(f" It holds by 0.000 %, less than the ±10.000 % {STANDS_ON}")
+    assert (fails.code, fails.measured, fails.limit) == (Code.RING_CUT_THROUGH, 0, 4)
+    assert fails.message.endswith(f" It fails by 4.000 %, less than the ±10.000 % {STANDS_ON}")
+
+
 def test_a_passage_near_what_is_heard_says_what_the_turn_and_the_radius_are_worth() -> None:
     # 0.1 mm at 60 s and 50 mm is 19.099 ms, 0.01° 1.667: together 20.765. A turn of 60 ± 3 s is 5 % of both, 1.038;
     # a radius of 50 ± 1 mm 2 % of the first, 0.382.
@@ -210,3 +224,12 @@ def test_the_worths_of_all_tracks_at_once_are_those_of_each(arcs: dict[str, Any]
     assert reaches_unsure_mm(disc).tolist() == [reach_unsure_mm(disc, 0), reach_unsure_mm(disc, 1), 0.0]
     assert reach_unsure_mm(disc, 1) > 0
     assert reaches_unsure_mm(disc_of(movement_with(), [(1, 1.0)])).tolist() == [0.0, 0.0, 0.0]
+
+
+def test_the_measured_arcs_of_a_wheel_may_be_off_together() -> None:
+    wheel = {"engagement_arc_mm": worth(3.2, 0.3), "release_arc_mm": worth(1.0, 0.2), "thickness_mm": 0.5}
+    own = {"tracks/0/engagement_arc_mm": worth(3.2, 0.1), "tracks/0/release_arc_mm": 1.0}
+    disc = disc_of(movement_with({"star_wheel": wheel, **own}), [(1, 1.0)])
+
+    # Track 1 has arcs of its own, of which one is measured.
+    assert [reach_unsure_mm(disc, track) for track in (0, 1)] == [0.1, pytest.approx(0.3 + 0.2)]

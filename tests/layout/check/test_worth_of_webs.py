@@ -142,6 +142,18 @@ def test_a_web_to_a_feature_says_what_it_is_worth() -> None:
     assert told(worth(46.4, 0.05)) == told(46.4) == []
 
 
+def test_a_web_to_a_feature_stands_on_half_its_width() -> None:
+    # As above, 0.58 mm: 0.08 more than are needed; of a width of 4 ± 0.2 mm half lies towards the opening.
+    def told(plus_minus: float) -> list[Finding]:
+        hole = {"purpose": "drive", "shape": "hole", "first_at_deg": 90, "count": 2, "radius_mm": 46.4}
+        hole |= {"width_mm": worth(4, plus_minus), "length_mm": 4}
+        return webs_to_features_hold(disc_of(movement_with({"disc/features": [hole]}), [(1, 10.0)]))
+
+    [advice] = told(0.2)
+    assert advice.message.endswith(f" It holds by 0.080 mm, less than the ±0.100 mm {STANDS_ON}")
+    assert told(0.15) == []
+
+
 # Reach 0.6 + 0.05 + 0.05 + 0.0545 of slide = 0.7545; a star 1.2 mm away begins at 0.95: a margin of 0.1955 mm.
 NEAR = {"tracks/1/radius_mm": 51.2}
 
@@ -158,6 +170,8 @@ NEAR = {"tracks/1/radius_mm": 51.2}
         ({**NEAR, "disc/run_out_mm": worth(0.05, 0.2)}, "0.200"),
         # The row moves by 4 mm, and the slide by the 2.3333 mm of reach times 4/50: about 0.187, and 0.191 in full.
         ({**NEAR, "gantry_offset_mm": worth(0, 4)}, None),
+        # By 4.5 mm: √(50² − 4.5²) − √(50² − 6.8333²) = 0.2662 of slide, 0.2117 more than at 0.
+        ({**NEAR, "gantry_offset_mm": worth(0, 4.5)}, "0.212"),
     ],
 )
 def test_a_neighbour_stands_on_both_radii_and_halves_of_width_and_star(

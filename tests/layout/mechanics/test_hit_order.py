@@ -118,6 +118,13 @@ def test_an_exact_half_turn_goes_forward_whatever_its_last_bit() -> None:
     np.testing.assert_allclose(moves.to_rad, [0, math.pi, 2 * math.pi])
 
 
+def test_an_angle_that_is_less_by_rounding_is_the_same_angle_and_nothing_is_taken_up() -> None:
+    moves = table_moves(np.array([2.0, 2.0 - 5e-13, 2.0]), take_up_rad=DEGREE_RAD)
+
+    assert moves.taken_up.tolist() == [True, False, False]
+    assert moves.turned_rad == pytest.approx(0.0, abs=1e-9)
+
+
 def test_a_strike_in_the_middle_takes_the_angle_of_the_next_that_has_one() -> None:
     middle = (0.0, 0.0)
     at_mm = np.array([middle, (0, 5), middle, middle, (-5, 0), middle])

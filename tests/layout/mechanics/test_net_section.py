@@ -181,6 +181,17 @@ def test_a_slot_of_the_blank_takes_its_width_of_a_ray(width_mm: float, length_mm
     assert left.to_mm - left.from_mm - left.line_mm == pytest.approx(most_mm, abs=1.5 * LINE_GRAIN_MM)
 
 
+def test_a_notch_takes_what_of_it_lies_in_the_band() -> None:
+    # 20 mm long and from 80 mm outwards past the rim: a ray through its middle loses all from there to the band's end,
+    # the ring through both its inner corners most of itself.
+    left = drilled(shape="notch", radius_mm=105, width_mm=50, length_mm=20)
+
+    assert left.to_mm - left.from_mm - left.line_mm == pytest.approx(TO_MM - 80, abs=LINE_GRAIN_MM)
+    assert left.line_angle_rad == pytest.approx(math.radians(200), abs=1e-3)
+    assert left.ring_share == pytest.approx(1 - 2 * math.atan(10 / 80) / FULL_TURN_RAD, abs=RING_GRAIN_RAD)
+    assert left.ring_radius_mm == pytest.approx(math.hypot(80, 10), abs=1e-3)
+
+
 def test_a_notch_that_ends_short_of_the_band_takes_nothing() -> None:
     left = drilled(shape="notch", radius_mm=120, width_mm=20, length_mm=4)
     alone = left_on(disc_of(PLAIN, [(1, 10.0), (2, 10.0)], PRESS))

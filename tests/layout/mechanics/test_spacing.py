@@ -157,6 +157,18 @@ def test_the_widest_web_a_cutter_may_ask_for_looks_at_six_neighbours_only() -> N
     assert apart == {1, 2, 3, 4, 5, 6}
 
 
+def test_openings_too_near_even_on_opposite_sides_are_too_near_all_round() -> None:
+    # 10 mm one way and 12 the other: 22 mm apart at most, less than 50.
+    movement = movement_with({"tracks/0/radius_mm": 10, "tracks/1/radius_mm": 12, "disc/centre_hole_mm": 2})
+
+    here = spacing(movement, cutter_with({"min_web_mm": 50}))
+
+    [pair] = here.between
+    assert (pair.inner_index, pair.outer_index) == (0, 1)
+    assert (pair.from_rad, pair.to_rad) == pytest.approx((-math.pi, math.pi))
+    assert here.least_rad[:2].tolist() == pytest.approx([math.pi, math.pi])
+
+
 def test_the_reason_of_a_repeat_is_the_first_thing_that_forbids_it() -> None:
     movement = movement_with({"damper_recovery_s": 2.0})
     here = spacing(movement, cutter_with({"min_web_mm": 12.0}))
