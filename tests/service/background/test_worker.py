@@ -352,8 +352,10 @@ def test_what_the_sweep_found_and_gave_out_is_looked_for_again_after_a_second_an
 
     assert too_soon is None
     assert {*first, sweep.next_found()} == placed
+    place(shop, tune_called("One that comes late"))
+    now_s[0] += LEAST_S
     sweep.sweep_on()
-    assert sweep.next_found() is None  # the last look found fewer than it may: none was left behind
+    assert sweep.next_found() is None  # the last look found fewer than it may: what comes now has a message
 
 
 def test_an_order_that_is_lost_is_not_renewed_and_others_are(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
