@@ -551,3 +551,16 @@ def test_a_database_that_stops_answering_during_a_backup_is_told_in_one_line(
     assert main(["backup", str(small.folder)]) == 2
 
     assert capsys.readouterr().err == "discwright: the database does not answer; try again in a moment\n"
+
+
+def test_what_was_ended_before_a_backup_is_noted_on_a_new_machine_too(small: Shop, tmp_path: Path) -> None:
+    key_id = new_key(small.parts, Scope.READ).told.id
+    revoke_for_good(small.parts.store, small.parts.files, key_id, utc_now())
+    small.back_up()
+    settings = settings_from(environment_of(tmp_path / "new"))
+
+    restore(settings, small.folder, may_replace=False)
+
+    parts = open_parts(settings)
+    assert list(parts.files.noted()) == [key_id]
+    parts.store.close()

@@ -24,6 +24,7 @@ from service.background.planning_child import (
     PlanningChild,
 )
 from service.background.stage_watch import StageWatch, TimedKeeper, TimedPlanner
+from service.orders.test_tunes import Deed, state_tunes
 from service.parts import Parts
 from service.store.faults import StoreBusyError
 from service.store.holds import FileKeeper
@@ -342,3 +343,15 @@ def test_a_keeper_that_is_watched_reads_as_it_does(shared_parts: Parts) -> None:
 
     assert watched.read(digest) == b"kept and timed"
     assert watch.took_s.keys() == {"keeping"}
+
+
+@of_a_process
+def test_a_child_refuses_the_tune_that_asks_for_it_where_a_test_key_ordered_it_and_plans_it_for_others(
+    setup: ChildSetup, request_for: Requests
+) -> None:
+    [tune] = [one.content for one in state_tunes() if one.deed is Deed.REFUSE]
+    asked = request_for(tune)
+
+    kinds, _ = answers_of_one_let_go(as_json(setup), as_json(asked), as_json(replace(asked, is_test=True)))
+
+    assert kinds == [Kind.WARM, Kind.PLANNED, Kind.REFUSED]

@@ -256,3 +256,19 @@ def test_a_child_that_ends_while_the_worker_is_hurried_is_not_tried_again(bench:
 
     assert (look(bench.parts, order_id).state, bench.started) == (State.RECEIVED, 1)
     assert bench.shared.queue.length() == 1  # others are told of it
+
+
+def test_a_child_that_has_grown_is_replaced_before_the_next_order(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def grow(request: PlanRequest) -> ChildAnswer:
+        monkeypatch.setattr(ScriptedChild, "has_grown", True)
+        return REFUSED
+
+    bench.deeds = [grow, REFUSED]
+    order_ids = [bench.order("Harvest"), bench.order("Sowing")]
+
+    bench.run()
+
+    assert bench.started == 2
+    assert {look(bench.parts, order_id).state for order_id in order_ids} == {State.FAILED}
