@@ -214,7 +214,8 @@ class LayoutDesk:
 
         Raises:
             ProblemError: It cannot be made again as it was told.
-            OSError: The disk is full, or the folder was taken away.
+            StoreFullError: The disk is full.
+            OSError: The folder was taken away.
         """
         if reason is not None and not kept.good_to_cut:
             return self._planner.files_of(self._laid_out(kept), not_good=reason)

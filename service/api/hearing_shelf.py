@@ -21,14 +21,14 @@ from typing import TYPE_CHECKING, BinaryIO
 
 from layout.documents import Movement
 from service.api.computing_queue import computing_queue
-from service.api.layout_cache import OWNER_ONLY, PART_SUFFIX, program_digest
+from service.api.layout_cache import OWNER_ONLY, PART_SUFFIX, program_digest, room_told
 from service.api.models.hearings import PlucksQuery, SoundQuery
 from service.api.problems import ProblemError
 from service.computation import hearing_asked, hearing_of, write_hearing
 from service.settings import ServiceSettings
 
 if TYPE_CHECKING:
-    from layout.hearing_walk import Bits
+    from layout.hearing_walk import Bits, Hearing
 
 FOLDER = "hearings"
 SUFFIX = ".sound"
@@ -84,7 +84,8 @@ class HearingShelf:
         Raises:
             DocumentError: A turn of a winding is asked for that the movement does not state.
             ProblemError: It would be longer than is made.
-            OSError: The disk is full, or the folder was taken away.
+            StoreFullError: The disk is full.
+            OSError: The folder was taken away.
         """
         key = self._key(layout_json, movement, query)
         found = self._found(key)
@@ -126,7 +127,7 @@ class HearingShelf:
         for path in self._folder.glob(f"{key}-*{SUFFIX}"):
             with contextlib.suppress(FileNotFoundError):  # another process has just let it go
                 os.utime(path)
-                return KeptSound(digest=path.stem.rpartition("-")[2], byte_count=path.stat().st_size)
+                return KeptSound(digest=_digest_in(path), byte_count=path.stat().st_size)
         return None
 
     def _made(self, key: str, layout_json: bytes, movement: Movement, query: PlucksQuery) -> KeptSound:
@@ -139,20 +140,24 @@ class HearingShelf:
                 detail=f"it would sound for {hearing.length_s:.0f} s, and {most_s} s are made at most",
                 more={"most_s": most_s},
             )
+        with room_told():
+            kept = self._written(key, hearing, bits)
+        self._let_go(kept)
+        return KeptSound(digest=_digest_in(kept), byte_count=kept.stat().st_size, is_new=True)
+
+    def _written(self, key: str, hearing: Hearing, bits: Bits | None) -> Path:
         self._folder.mkdir(mode=OWNER_ONLY, parents=True, exist_ok=True)
         handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
         try:
             with os.fdopen(handle, "wb") as file, computing_queue().admitted():
                 hashing = _Hashing(file)
                 write_hearing(hearing, hashing, bits)
-            digest = hashing.digest.hexdigest()
-            kept = self._folder / f"{key}-{digest}{SUFFIX}"
+            kept = self._folder / f"{key}-{hashing.digest.hexdigest()}{SUFFIX}"
             os.replace(part, kept)
         except BaseException:
             Path(part).unlink(missing_ok=True)
             raise
-        self._let_go(kept)
-        return KeptSound(digest=digest, byte_count=kept.stat().st_size, is_new=True)
+        return kept
 
     def _let_go(self, keep: Path) -> None:
         """Remove what nobody has heard for long, the least recent where all are too large, and abandoned parts."""
@@ -169,6 +174,11 @@ class HearingShelf:
             taken_bytes += size_bytes
             if taken_bytes > self._limits.hearing_bytes and not is_kept:
                 path.unlink(missing_ok=True)
+
+
+def _digest_in(path: Path) -> str:
+    """The digest of a sound's bytes, from the name of its file."""
+    return path.stem.rpartition("-")[2]
 
 
 def _pieces(file: BinaryIO, start: int, end: int | None) -> Iterator[bytes]:

@@ -17,7 +17,7 @@ import stat
 import tempfile
 import time
 import zipfile
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from functools import lru_cache
 from importlib.resources import files
@@ -27,6 +27,8 @@ from pathlib import Path
 from layout.file_names import TOLD_FILES
 from service.documents import Inputs, Shipped, Source, Written
 from service.settings import ServiceSettings, SettingsError
+from service.store.faults import StoreFullError
+from service.store.files import NO_ROOM
 
 log = logging.getLogger("discwright")
 
@@ -145,17 +147,19 @@ class LayoutCache:
         The layout just kept stays, whatever its size.
 
         Raises:
-            OSError: The disk is full, or the folder was taken away.
+            StoreFullError: The disk is full.
+            OSError: The folder was taken away.
         """
         packed = _packed(layout)
-        handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
-        try:
-            with os.fdopen(handle, "wb") as file:
-                file.write(packed)
-            os.replace(part, self._path(layout.fingerprint, layout.owner_id))
-        except BaseException:
-            Path(part).unlink(missing_ok=True)
-            raise
+        with room_told():
+            handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
+            try:
+                with os.fdopen(handle, "wb") as file:
+                    file.write(packed)
+                os.replace(part, self._path(layout.fingerprint, layout.owner_id))
+            except BaseException:
+                Path(part).unlink(missing_ok=True)
+                raise
         self._let_go(keep=self._path(layout.fingerprint, layout.owner_id), taken_bytes=len(packed))
 
     def let_go(self, fingerprint: str, owner_id: str | None = None) -> None:
@@ -188,6 +192,21 @@ class LayoutCache:
             taken_bytes += size_bytes
             if count > self._most_layouts or taken_bytes > self._most_bytes:
                 path.unlink(missing_ok=True)
+
+
+@contextlib.contextmanager
+def room_told() -> Iterator[None]:
+    """Tell a full disk in our own words, as the store of files does; whatever else is raised goes on as it is.
+
+    Raises:
+        StoreFullError: There is no room.
+    """
+    try:
+        yield
+    except OSError as fault:
+        if fault.errno not in NO_ROOM:
+            raise
+        raise StoreFullError("there is no room left in the folder of layouts") from fault
 
 
 def program_digest() -> str:

@@ -1,13 +1,29 @@
 """Folders that get the files of a command, each whole or not at all: one way for all commands."""
 
 import contextlib
+import fcntl
 import os
 import shutil
 import tempfile
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from pathlib import Path
 
 from service.commands.errors import CommandError
+
+INSIDE = ".discwright-"  # begins the name of a folder in which files are written before they are moved out
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Inside:
+    """A folder inside another, and the lock on it, which ends with the process that holds it."""
+
+    path: Path
+    lock: int
+
+    def remove(self) -> None:
+        shutil.rmtree(self.path, ignore_errors=True)
+        os.close(self.lock)
 
 
 def write_folders(
@@ -17,7 +33,8 @@ def write_folders(
 
     Folders are made where they do not exist. Everything is written in a folder inside each first, on the
     same disk, then renamed. Cutting files of an earlier run go first and new ones come last: whenever it is
-    interrupted, no cutting file stands beside files of another run, nor beside another set's.
+    interrupted, no cutting file stands beside files of another run, nor beside another set's. What one that was
+    killed left half-written inside goes when its folder is written to again.
 
     Args:
         folders: The files by name, by their folder. A folder without files is not made, and only its cutting
@@ -31,24 +48,25 @@ def write_folders(
         CommandError: Something cannot be written; says what. Folders made for it are removed again.
     """
     made: list[Path] = []
-    ready: dict[Path, Path] = {}
+    ready: dict[Path, _Inside] = {}
     try:
         for folder, files in folders.items():
             _check_free(folder, {*files, *cutting})
             made += _make(folder) if files else []
         for folder, files in folders.items():
             if files:
+                _clear_abandoned(folder)
                 ready[folder] = _written_inside(folder, files)
         stale = {folder: _without(folder, cutting) for folder in folders}
         for last in (False, True):
             for folder, inside in ready.items():
-                _move_out(inside, folder, [name for name in folders[folder] if (name in cutting) == last])
+                _move_out(inside.path, folder, [name for name in folders[folder] if (name in cutting) == last])
     except OSError as refusal:
         where = ", ".join(repr(str(folder)) for folder in folders)
         raise CommandError(f"cannot write to {where}: {refusal.strerror or refusal}") from refusal
     finally:
         for inside in ready.values():
-            shutil.rmtree(inside, ignore_errors=True)
+            inside.remove()
         _remove_empty(made)
     return {folder: tuple(name for name in stale[folder] if name not in files) for folder, files in folders.items()}
 
@@ -59,16 +77,31 @@ def _check_free(folder: Path, names: set[str]) -> None:
             raise CommandError(f"{str(folder / name)!r} is a folder; remove it or choose another --out")
 
 
-def _written_inside(folder: Path, files: Mapping[str, bytes]) -> Path:
+def _written_inside(folder: Path, files: Mapping[str, bytes]) -> _Inside:
     """The files in a new folder inside this one; gone again where it cannot be."""
-    inside = Path(tempfile.mkdtemp(prefix=".discwright-", dir=folder))
+    path = Path(tempfile.mkdtemp(prefix=INSIDE, dir=folder))
+    inside = _Inside(path=path, lock=os.open(path, os.O_RDONLY))
     try:
+        with contextlib.suppress(OSError):  # a disk that knows no locks
+            fcntl.flock(inside.lock, fcntl.LOCK_EX | fcntl.LOCK_NB)
         for name, content in files.items():
-            (inside / name).write_bytes(content)
+            (path / name).write_bytes(content)
     except BaseException:
-        shutil.rmtree(inside, ignore_errors=True)
+        inside.remove()
         raise
     return inside
+
+
+def _clear_abandoned(folder: Path) -> None:
+    """Remove what runs that were killed left inside a folder: what no process holds the lock of."""
+    for path in folder.glob(f"{INSIDE}*"):
+        with contextlib.suppress(OSError):  # held, or gone by now
+            lock = os.open(path, os.O_RDONLY)
+            try:
+                fcntl.flock(lock, fcntl.LOCK_EX | fcntl.LOCK_NB)
+                shutil.rmtree(path)
+            finally:
+                os.close(lock)
 
 
 def _without(folder: Path, cutting: Sequence[str]) -> list[str]:

@@ -9,7 +9,6 @@ from typing import Any
 
 from layout.documents import Cutter, Movement, read_cutter, read_movement, shipped_cutter, shipped_cutter_ids
 from layout.documents.reading import Stated, read_json
-from layout.errors import DocumentError
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.spacing import Spacing, spacing_of
 from layout.mechanics.turning import FULL_TURN_RAD, turning_of
@@ -101,12 +100,12 @@ def tracks_of(movement: Movement, cutter: Cutter | None = None) -> tuple[TrackTo
         movement: The movement.
         cutter: Whose least web counts for the least repeat; None for the one meant where none is named.
     """
-    turning = turning_of(movement)
-    spacing = _spacing(movement, cutter or shipped_cutter(shipped_cutter_ids()[0]))
+    turning, used = turning_of(movement), cutter or shipped_cutter(shipped_cutter_ids()[0])
+    spacing = spacing_of(movement, turning, pattern_of(movement, used), used.min_web_mm)
     rows = []
     for index, track in enumerate(movement.tracks):
         teeth = [tooth for tooth in movement.teeth if tooth.track == track.track]
-        least_rad = None if spacing is None else float(spacing.least_rad[index])
+        least_rad = float(spacing.least_rad[index])
         stated = movement.stated.get(f"/tracks/{index}/radius_mm")
         rows.append(
             TrackTold(
@@ -115,9 +114,9 @@ def tracks_of(movement: Movement, cutter: Cutter | None = None) -> tuple[TrackTo
                 plus_minus=_off(stated),
                 pitch=teeth[0].pitch if teeth else "–",
                 teeth=", ".join(str(tooth.tooth) for tooth in teeth) or "–",
-                least_deg="–" if least_rad is None else f"{math.degrees(least_rad):.1f}",
-                least_s="–" if least_rad is None else f"{least_rad / FULL_TURN_RAD * turning.revolution_s:.2f}",
-                why="–" if spacing is None else text_of(f"movements.why_{_why(spacing, index)}"),
+                least_deg=f"{math.degrees(least_rad):.1f}",
+                least_s=f"{least_rad / FULL_TURN_RAD * turning.revolution_s:.2f}",
+                why=text_of(f"movements.why_{_why(spacing, index)}"),
             )
         )
     return tuple(rows)
@@ -131,13 +130,6 @@ def field_words(name: str) -> str:
 def unit_of(name: str) -> str:
     """The unit that a field's name carries; "" for none."""
     return next((unit for ending, unit in UNITS if name.endswith(ending)), "")
-
-
-def _spacing(movement: Movement, cutter: Cutter) -> Spacing | None:
-    try:
-        return spacing_of(movement, turning_of(movement), pattern_of(movement, cutter), cutter.min_web_mm)
-    except DocumentError:  # this cutter cannot make its projections
-        return None
 
 
 def _why(spacing: Spacing, index: int) -> str:

@@ -1,5 +1,6 @@
 """Backups made while the service works, and restores that bring back everything but what was deleted since."""
 
+import json
 import os
 import sqlite3
 import subprocess
@@ -10,6 +11,7 @@ from dataclasses import dataclass
 from datetime import timedelta
 from importlib.util import find_spec
 from pathlib import Path
+from typing import Any
 
 import pytest
 from sqlalchemy import select, text, update
@@ -31,6 +33,7 @@ from service.orders.placing import nothing_more
 from service.orders.views import OrderView
 from service.parts import Parts, open_parts
 from service.settings import ServiceSettings, settings_from
+from service.store.faults import StoreBusyError
 from service.store.holds import sweep_files
 from service.store.store import Store
 from service.store.tables import Delivery, Event, FileHold, Hook, Key, Order
@@ -449,3 +452,115 @@ def test_a_folder_that_is_no_backup_is_told_in_one_line(tmp_path: Path, capsys: 
     written = capsys.readouterr().err
     assert written == f"discwright: {tmp_path} is no backup, or one that never came to its end\n"
     assert os.listdir(tmp_path) == []
+
+
+def test_a_backup_without_the_database_is_not_brought_to_sqlite(small: Shop) -> None:
+    small.back_up()
+    about = small.folder / ABOUT_NAME
+    about.write_text(json.dumps({**json.loads(about.read_text()), "has_database": False}))
+
+    with pytest.raises(BackupError, match="has no database of SQLite in it; load its dump into PostgreSQL"):
+        restore(small.settings, small.folder, may_replace=True)
+
+
+def test_a_database_of_something_else_is_overwritten_as_an_empty_one_is(small: Shop, tmp_path: Path) -> None:
+    order = placed(small.parts)
+    small.back_up()
+    settings = settings_from(environment_of(tmp_path / "new"))
+    settings.places.data_directory.mkdir(parents=True)
+    with closing(sqlite3.connect(settings.places.data_directory / "discwright.sqlite")) as other:
+        other.execute("CREATE TABLE notes (line TEXT)")
+
+    restore(settings, small.folder, may_replace=False)
+
+    parts = open_parts(settings)
+    with parts.store.reading() as session:
+        assert session.scalars(select(Order.id)).all() == [order.id]
+    parts.store.close()
+
+
+def test_a_copy_of_the_database_that_is_damaged_is_no_backup(small: Shop, monkeypatch: pytest.MonkeyPatch) -> None:
+    class Damaged(sqlite3.Connection):
+        """Its integrity is found wanting."""
+
+        def execute(self, sql: str, *given: Any) -> sqlite3.Cursor:
+            line = "SELECT 'row 7 missing from index'" if "integrity_check" in sql else sql
+            return super().execute(line, *given)
+
+    connect = sqlite3.connect
+    monkeypatch.setattr("service.backups.sqlite3.connect", lambda path, **more: connect(path, factory=Damaged, **more))
+
+    with pytest.raises(BackupError, match=r"^the copy of the database is damaged \(row 7 missing from index\); check"):
+        back_up(small.parts, small.folder)
+
+    assert not (small.folder / ABOUT_NAME).exists()
+
+
+def test_a_file_that_the_store_has_lost_is_told_by_both_commands_and_the_rest_is_kept(
+    small: Shop, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    order = placed(small.parts)
+    small.parts.files.remove(order.tune_digest)
+    small.parts.store.close()
+    for name, value in environment_of(tmp_path).items():
+        monkeypatch.setenv(name, value)
+
+    assert main(["backup", str(small.folder)]) == 0
+    assert main(["restore", str(small.folder), "--replace"]) == 0
+
+    written = capsys.readouterr().err.splitlines()
+    assert written == [
+        f"discwright: 1 files were not to be had, the first {order.tune_digest}",
+        f"discwright: 1 files are in neither place, the first {order.tune_digest}",
+    ]
+
+
+def test_a_folder_that_cannot_be_written_is_told_in_one_line(
+    small: Shop, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / "file").write_text("no folder")
+    for name, value in environment_of(tmp_path).items():
+        monkeypatch.setenv(name, value)
+
+    assert main(["backup", str(tmp_path / "file" / "backup")]) == 2
+
+    assert capsys.readouterr().err == f"discwright: {tmp_path}/file/backup cannot be used: Not a directory\n"
+
+
+def test_a_command_that_finds_no_database_says_so_in_one_line(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setenv("DISCWRIGHT_DATA", str(tmp_path / "data"))
+    monkeypatch.setenv("DATABASE_URL", "postgresql://nobody@127.0.0.1:1/none")  # nothing listens on port 1
+
+    assert main(["backup", str(tmp_path / "backup")]) == 2
+
+    assert capsys.readouterr().err == "discwright: the database does not answer; try again in a moment\n"
+
+
+def test_a_database_that_stops_answering_during_a_backup_is_told_in_one_line(
+    small: Shop, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    def no_answer(*_: object) -> None:
+        raise StoreBusyError("the database does not answer; try again in a moment")
+
+    for name, value in environment_of(tmp_path).items():
+        monkeypatch.setenv(name, value)
+    monkeypatch.setattr("service.backups.note_revoked", no_answer)
+
+    assert main(["backup", str(small.folder)]) == 2
+
+    assert capsys.readouterr().err == "discwright: the database does not answer; try again in a moment\n"
+
+
+def test_what_was_ended_before_a_backup_is_noted_on_a_new_machine_too(small: Shop, tmp_path: Path) -> None:
+    key_id = new_key(small.parts, Scope.READ).told.id
+    revoke_for_good(small.parts.store, small.parts.files, key_id, utc_now())
+    small.back_up()
+    settings = settings_from(environment_of(tmp_path / "new"))
+
+    restore(settings, small.folder, may_replace=False)
+
+    parts = open_parts(settings)
+    assert list(parts.files.noted()) == [key_id]
+    parts.store.close()

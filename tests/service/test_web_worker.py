@@ -1,7 +1,9 @@
 """Slow clients, over real sockets, of a web process with four threads whose limits are short."""
 
+import errno
 import http.client
 import json
+import os
 import signal
 import socket
 import statistics
@@ -346,6 +348,7 @@ def test_when_told_to_stop_it_answers_what_it_has_and_ends(tmp_path: Path) -> No
         (("2001:db8:1:2:3::4", 5000, 0, 0), "2001:db8:1:2::/64"),
         (("fe80::1%eth0", 5000, 0, 2), "fe80::/64"),
         ("", ""),
+        (("a pipe", 0), "a pipe"),
     ],
 )
 def test_connections_are_counted_by_address_and_by_network(client: Any, address: str) -> None:
@@ -402,3 +405,84 @@ def test_a_loop_shows_a_sign_of_life_when_one_is_due_and_not_at_every_turn(monke
 
     assert (at_once, signs.count) == (1, 2)
     assert Config().timeout >= 10 * SIGN_OF_LIFE_EVERY_S  # s; what the service leaves as gunicorn has it
+
+
+class Client:
+    """The other end of a connection that breaks off, or of one that does not."""
+
+    def __init__(self, *, is_gone: bool) -> None:
+        self.is_gone = is_gone
+        self.got = b""
+
+    def sendall(self, told: bytes) -> None:
+        if self.is_gone:
+            raise ConnectionResetError
+        self.got += told
+
+
+@pytest.mark.parametrize("is_gone", [False, True])
+def test_what_fails_outside_the_app_is_told_as_the_service_s_own_fault_and_logged(
+    caplog: pytest.LogCaptureFixture, *, is_gone: bool
+) -> None:
+    worker, client = GatheringWorker.__new__(GatheringWorker), Client(is_gone=is_gone)
+
+    worker.handle_error(None, client, None, ZeroDivisionError("geheim"))
+
+    assert "a request failed outside the app" in caplog.messages
+    assert client.got.startswith(b"" if is_gone else b"HTTP/1.1 500 ")
+    assert (b"/problems/internal-error" in client.got) is not is_gone
+    assert b"geheim" not in client.got
+
+
+def test_an_answer_of_which_nothing_is_taken_for_too_long_is_broken_off_and_the_connection_closed(
+    monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture
+) -> None:
+    def times_out(*_: object) -> bool:
+        raise TimeoutError
+
+    monkeypatch.setattr(web_worker.ThreadWorker, "handle_request", times_out)
+    worker: Any = GatheringWorker.__new__(GatheringWorker)
+
+    assert worker.handle_request(None, None) is False  # gunicorn is not to keep it
+    assert "an answer was broken off: nothing of it was taken for too long" in caplog.messages
+
+
+class Listener:
+    """A socket on which taking a connection fails."""
+
+    def __init__(self, number: int) -> None:
+        self.number = number
+
+    def accept(self) -> None:
+        raise OSError(self.number, os.strerror(self.number))
+
+
+def accepting() -> tuple[Any, list[str]]:
+    """A process with nothing in hand, and of whom it lets go."""
+    worker: Any = GatheringWorker.__new__(GatheringWorker)
+    let_go: list[str] = []
+    worker._let_go_of_one = let_go.append
+    return worker, let_go
+
+
+@pytest.mark.parametrize("number", [errno.EMFILE, errno.ENFILE])
+def test_a_process_that_may_open_no_more_files_lets_go_of_who_has_been_longest_on_the_way(number: int) -> None:
+    worker, let_go = accepting()
+
+    assert worker.accept(Listener(number)) is False
+    assert let_go == [""]  # of any address
+
+
+@pytest.mark.parametrize("number", [errno.EAGAIN, errno.ECONNABORTED])
+def test_a_connection_that_is_gone_before_it_is_taken_costs_nobody_a_place(number: int) -> None:
+    worker, let_go = accepting()
+
+    assert worker.accept(Listener(number)) is False
+    assert let_go == []
+
+
+def test_a_listener_that_is_broken_is_no_quiet_one() -> None:
+    worker, _ = accepting()
+
+    with pytest.raises(OSError, match="Bad file descriptor"):
+        worker.accept(Listener(errno.EBADF))

@@ -140,3 +140,20 @@ def test_rulings_in_a_chain_no_nudge_can_mend_are_all_named() -> None:
 
     with pytest.raises(RulingError, match=r"note 2 .*, note 1 .* and note 0 .* cannot all sound: on track 1"):
         ruled(notes, movement=comb_with(), **nudges)
+
+
+def test_rulings_in_a_chain_of_more_than_are_named_are_counted() -> None:
+    # 1 s is needed and 0.9968 s are there: thirteen notes are 12 · 3.2 = 38.4 ms short, which two ends moved by 20 ms
+    # mend, fourteen 41.6 ms.
+    nudges: dict[str, Any] = {"largest_nudge_ms": 20, "largest_melody_nudge_ms": 20, "passage": {"from_s": 0}}
+    chain: list[Note] = [(0.5 + 0.9968 * number, "C4") for number in range(14)]
+
+    assert left_out(ruled(chain[:13], movement=comb_with(), **nudges)) == {}
+    with pytest.raises(RulingError) as refusal:
+        ruled(chain, movement=comb_with(), **nudges)
+
+    [problem] = refusal.value.problems
+    assert problem.pointer == "/rulings/13"
+    assert problem.message.endswith(
+        "note 13 (/rulings/13) and 13 other notes that must sound have no room together; drop some of them"
+    )

@@ -5,6 +5,7 @@ import pytest
 
 from layout.documents import shipped_cutter, shipped_cutter_ids
 from layout.documents.cutter import LAYER_COLOURS, read_cutter
+from layout.documents.shipped import shipped_text
 from layout.errors import DocumentError, NotShippedError
 from tests.layout.examples import LASER, PRESS, cutter_with, document_with
 
@@ -75,6 +76,16 @@ def test_a_cutter_may_name_its_own_layers() -> None:
         (PRESS, {"press": {"strike_word": "M20 {tool}"}}, "strike_word cannot hold {tool}"),
         (LASER, {"fold/slit_width_mm": None}, 'slit "channel" needs slit_width_mm'),
         (LASER, {"fold/slit": "centre-line"}, "leave slit_width_mm out"),
+        (
+            LASER,
+            {"fold/slit": "centre-line", "fold/slit_width_mm": None, "fold/relief_width_mm": 0.4},
+            'relief_width_mm: slit "centre-line" has no room for relief_width_mm; use a channel',
+        ),
+        (
+            LASER,
+            {"fold/slit": "centre-line", "fold/slit_width_mm": None, "fold/relief_width_mm": None, "kerf_mm": 0},
+            '/kerf_mm: slit "centre-line" needs kerf_mm above 0',
+        ),
         (LASER, {"tools": PRESS.model_dump(mode="json")["tools"]}, "a laser has no tools"),
         (PRESS, {"fold": LASER.model_dump(mode="json")["fold"]}, "a punch press lances; leave fold out"),
         (PRESS, {"tools/2/edge_ahead_mm": 0.0}, "edge_ahead_mm must be minus half of footprint_length_mm"),
@@ -99,3 +110,8 @@ def test_a_fault_in_a_cutter_names_its_place(base: Any, changes: dict[str, Any],
 def test_an_unknown_cutter_names_the_ones_there_are() -> None:
     with pytest.raises(NotShippedError, match="no cutter has the id 'saw'; known: fibre-laser, turn-press"):
         shipped_cutter("saw")
+
+
+def test_the_text_of_an_unknown_document_names_all_there_are() -> None:
+    with pytest.raises(NotShippedError, match=r"no document has the id 'saw'; known: fernhollow-31.*turn-press"):
+        shipped_text("saw")

@@ -89,6 +89,10 @@ def test_a_measured_number_is_read_plain_and_its_worth_is_kept() -> None:
         ({"tracks/2/engagement_arc_mm": 3}, "track 3: state both engagement_arc_mm and release_arc_mm"),
         ({"projection/depth_mm": None}, "a standing projection needs depth_mm"),
         ({"projection/kind": "slot"}, "a slot needs length_mm"),
+        (
+            {"projection": {"kind": "slot", "width_mm": 1, "length_mm": 2, "forming": "fold"}},
+            "/projection/forming: forming belongs to standing projections; leave it out for a slot",
+        ),
         ({"projection": {"kind": "slot", "width_mm": 1, "length_mm": 2}}, "slots need measured arcs"),
         ({"teeth/1/tooth": 1}, "tooth 1 is listed 2 times"),
         ({"teeth/1/track": 4}, "tooth 2: there is no track 4"),

@@ -2,15 +2,19 @@
 
 from typing import Any
 
+import numpy as np
 import pytest
 
 from layout.mechanics.bridging import gaps_in
 from layout.mechanics.drive import lifts_of
 from layout.mechanics.hole_hits import not_struck
+from layout.mechanics.lettering import strokes_mm
+from layout.mechanics.offset import moved_outlines
 from layout.mechanics.openings import radial_reach_mm
 from layout.mechanics.plain_letters import plain_ascii
 from layout.mechanics.projection import pattern_of
 from layout.mechanics.spacing import MOST_TRACKS_APART, spacing_of
+from layout.mechanics.star_wheel import depth_band_mm
 from layout.mechanics.turning import turning_of
 from tests.layout.arrange.small_comb import SMALL_COMB, comb_with
 from tests.layout.examples import LASER, PRESS, movement_with
@@ -88,3 +92,22 @@ def test_openings_that_reach_past_many_tracks_are_kept_from_the_six_next_ones() 
 
 def test_a_ring_round_a_letter_is_dropped_like_an_accent() -> None:
     assert plain_ascii("A\N{COMBINING ENCLOSING CIRCLE}b") == "Ab"
+
+
+def test_slots_have_no_depth() -> None:
+    assert depth_band_mm(movement_with(SLOTTED)) == (0.0, 0.0)
+
+
+@pytest.mark.parametrize("text", ["", " ", "   "])
+def test_a_text_of_blanks_has_no_strokes(text: str) -> None:
+    assert strokes_mm(text, 3.0) == ()
+
+
+@pytest.mark.parametrize(("inwards_mm", "is_left"), [(0.9, True), (1.0, False), (1.1, False)])
+def test_an_outline_moved_inwards_by_the_radius_of_its_ends_is_gone(inwards_mm: float, *, is_left: bool) -> None:
+    # Two half circles of 1 mm, 2 mm apart: an obround 4 mm long and 2 mm wide (DXF bulge of a half circle: 1).
+    points_mm = np.array([[[-1.0, -1.0], [1.0, -1.0], [1.0, 1.0], [-1.0, 1.0]]])
+
+    moved = moved_outlines(points_mm, np.array([0.0, 1.0, 0.0, 1.0]), -inwards_mm)
+
+    assert (moved is not None) is is_left

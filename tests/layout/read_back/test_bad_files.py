@@ -173,3 +173,17 @@ def test_any_bytes_give_a_reading_or_a_drawing_error(dxf: bytes) -> None:
     answered = answer(dxf)
 
     assert isinstance(answered, Reading | DrawingReadError)
+
+
+def test_lines_that_join_to_a_contour_with_too_many_vertices_are_not_compared(monkeypatch: pytest.MonkeyPatch) -> None:
+    document = disc_document(disc_of(PLAIN, [(1, 5.0), (3, 10.0)]))
+    for line in list(document.modelspace().query('LWPOLYLINE[layer=="SLITS"]')):
+        line.explode()
+    monkeypatch.setattr("layout.read_back.entities.MOST_VERTICES", 7)
+
+    said = [finding.message for finding in read(bytes_of(document)).findings]
+
+    assert said == [
+        "layer SLITS has entities (2) of type chain of lines, which cannot be read back; "
+        "polylines, circles, lines and arcs are"
+    ]

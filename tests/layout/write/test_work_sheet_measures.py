@@ -15,6 +15,8 @@ from layout.mechanics.frame import on_disc_mm
 from layout.place.disc import Disc
 from layout.write.work_sheet.disc_drawing import BOX_WIDTH_MM
 from layout.write.work_sheet.forming_sketch import section_of
+from layout.write.work_sheet.letters import printable
+from layout.write.work_sheet.paper import SMALL, at_most
 from layout.write.work_sheet.scale import SCALES, Scale, bar_mm, scale_for
 from layout.write.work_sheet.webs import thinnest_webs
 from tests.layout.write.examples import (
@@ -402,3 +404,16 @@ def test_what_nobody_stated_is_named_and_nothing_is_guessed() -> None:
     press = words_of(sheet_of(ONE_FOLD, making=Making(not_counted=("holes", "rim"))))
     assert "Not counted in time and price: holes, rim." in press
     assert "What making it takes" not in words_of(sheet_of(ONE_FOLD, making=None))
+
+
+def test_where_no_line_has_room_none_is_written() -> None:
+    assert at_most(0, "The disc weighs 140 g.", SMALL, 10.0) == []
+
+
+def test_accents_that_stand_alone_and_signs_that_are_not_seen_leave_no_gap() -> None:
+    # U+0301 alone on a blank, U+200D between two letters, U+20DD round one
+    assert printable("a \u0301b c\u200dd e\u20dd") == "a b cd e"
+
+
+def test_at_a_scale_where_no_bar_has_room_the_shortest_is_drawn() -> None:
+    assert bar_mm(Scale(on_paper=50, in_fact=1), 0.001) == 0.0001  # 0.005 mm on paper

@@ -1,5 +1,6 @@
 """Discs as they sound, over HTTP: whole and in parts, kept as files, of layouts, orders and proofs alike."""
 
+import errno
 import hashlib
 import io
 import os
@@ -13,6 +14,7 @@ import pytest
 import symusic
 from werkzeug.test import TestResponse
 
+from service.api import hearing_shelf
 from service.api.hearing_shelf import HearingShelf
 from service.app import create_app
 from service.limits import Limits
@@ -220,3 +222,19 @@ def test_a_disc_the_plan_does_not_have_is_not_heard(world: World, addresses: dic
     answer = get(world, addresses["order"].replace("/files/1/", "/files/2/") + ".wav")
 
     assert answer.status_code == 404
+
+
+def test_a_sound_that_finds_no_room_leaves_nothing_behind(
+    world: World, addresses: dict[str, str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def full(_source: object, _target: object) -> None:
+        raise OSError(errno.ENOSPC, "No space left on device")
+
+    before = kept_in(world.parts)
+    monkeypatch.setattr(hearing_shelf.os, "replace", full)
+
+    answer = get(world, f"{addresses['layout']}.wav?bits=24&of=written")
+
+    assert answer.status_code == 507
+    assert kept_in(world.parts) == before
+    assert list((world.parts.settings.cache_directory / "hearings").glob("*.part")) == []

@@ -1,3 +1,4 @@
+import errno
 import os
 import re
 import subprocess
@@ -13,6 +14,7 @@ from service.api.layout_cache import AT_HAND, KeptLayout, LayoutCache
 from service.documents import Inputs, Shipped, Source, Written
 from service.limits import Limits
 from service.settings import PlaceSettings, ServiceSettings, SettingsError
+from service.store.faults import StoreFullError
 
 FAR_PAST_NS = 1_000_000_000  # one second after the epoch: older than anything written now
 
@@ -115,14 +117,24 @@ def test_a_file_half_written_by_a_stopped_worker_goes_after_a_while(tmp_path: Pa
     assert (old.exists(), fresh.exists()) == (False, True)
 
 
-def test_a_failed_write_leaves_nothing_behind(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    def full_disk(*_: object) -> None:
-        raise OSError(28, "No space left on device")
+@pytest.mark.parametrize(
+    ("number", "kind", "told"),
+    [
+        (errno.ENOSPC, StoreFullError, "^there is no room left in the folder of layouts$"),
+        (errno.EDQUOT, StoreFullError, "^there is no room left in the folder of layouts$"),
+        (errno.EACCES, PermissionError, "it failed"),
+    ],
+)
+def test_a_failed_write_leaves_nothing_behind(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, number: int, kind: type[Exception], told: str
+) -> None:
+    def fails(*_: object) -> None:
+        raise OSError(number, "it failed")
 
     cache = LayoutCache(settings(tmp_path))
-    monkeypatch.setattr(os, "replace", full_disk)
+    monkeypatch.setattr(os, "replace", fails)
 
-    with pytest.raises(OSError, match="No space left"):
+    with pytest.raises(kind, match=told):
         cache.put(layout(1))
     assert list((tmp_path / "layouts").iterdir()) == []
 
@@ -273,4 +285,25 @@ def test_a_file_in_place_of_the_folder_is_refused(tmp_path: Path) -> None:
     (tmp_path / "layouts").write_text("")
 
     with pytest.raises(SettingsError, match=r"cannot be kept in .* \(File exists\)"):
+        LayoutCache(settings(tmp_path))
+
+
+def test_a_layout_that_another_worker_lets_go_meanwhile_is_passed_over(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    cache = LayoutCache(settings(tmp_path, Limits(cache_layouts=2)))
+    put_in_order(cache, layout(1), layout(2))
+    iterdir = Path.iterdir
+    monkeypatch.setattr(Path, "iterdir", lambda folder: [folder / "gone.zip", *iterdir(folder)])
+
+    cache.put(layout(3))
+
+    monkeypatch.undo()
+    assert kept_numbers(cache) == [2, 3]
+
+
+def test_a_folder_that_cannot_be_written_to_is_refused(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(os, "access", lambda *_: False)  # root may write everywhere
+
+    with pytest.raises(SettingsError, match="which cannot be written to; set DISCWRIGHT_CACHE to a folder of your own"):
         LayoutCache(settings(tmp_path))

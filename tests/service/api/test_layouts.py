@@ -1,3 +1,4 @@
+import errno
 import json
 from io import BytesIO
 
@@ -290,3 +291,18 @@ def test_a_head_request_tells_the_size_and_sends_nothing(client: Client) -> None
 
     assert (answer.status_code, answer.data) == (200, b"")
     assert answer.content_length == len(b"disc.dxf of Harvest Dance")
+
+
+def test_where_there_is_no_room_a_layout_is_refused_in_words_and_made_later(client: Client) -> None:
+    def full(*_: object) -> None:
+        raise OSError(errno.ENOSPC, "No space left on device")
+
+    with pytest.MonkeyPatch.context() as patched:
+        patched.setattr("os.replace", full)
+        refused = client.post_tune()
+    later = client.post_tune()
+
+    assert (refused.status_code, refused.json["type"]) == (507, "/problems/store-full")
+    assert refused.json["detail"] == "there is no room left in the folder of layouts"
+    assert int(refused.headers["Retry-After"]) > 0
+    assert later.status_code == 201

@@ -129,3 +129,14 @@ def test_on_loopback_a_service_that_listens_elsewhere_too_needs_a_key(parts: Par
     client = started(parts, listens_on_loopback=False, open_layouts=True)
 
     assert client.get("/metrics").status_code == 401
+
+
+def test_a_queue_that_is_away_is_told_and_all_else_is_counted(any_parts: Parts, started: Start) -> None:
+    places = replace(any_parts.settings.places, queue_url="redis://127.0.0.1:1/0")  # nothing listens on port 1
+    away = replace(any_parts, settings=replace(any_parts.settings, places=places))
+
+    read = samples(started(away))
+
+    assert value(read, "discwright_queue_up") == 0
+    assert value(read, "discwright_queue_length") is None
+    assert value(read, "discwright_orders", state="received") == 0

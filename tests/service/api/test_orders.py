@@ -524,6 +524,7 @@ def test_a_question_that_no_table_can_be_asked_is_refused(shop: Shop, asked: str
         ({**MINE, "quote": "quote_\0"}, "/quote"),
         ({**MINE, "hook": "\0"}, "/hook"),
         ({**MINE, "settings": {"title": "a\0b"}}, "/settings/title"),
+        ({**MINE, "settings": {"a\0b": 1}}, "/settings"),
     ],
 )
 def test_an_order_that_names_what_no_table_can_hold_is_refused(shop: Shop, said: dict[str, Any], pointer: str) -> None:
@@ -662,3 +663,34 @@ def test_a_deleted_order_leaves_a_tombstone_without_personal_data(shop: Shop) ->
     for word in ("W-1001", "a private reason", "Turning Day"):
         assert word not in json.dumps(gone)
         assert word not in events
+
+
+@pytest.mark.parametrize(
+    ("kind", "order"),
+    [
+        ("movement", MINE),
+        ("cutter", {**MINE, "cutter": "fibre-laser"}),
+        ("settings", {**MINE, "settings": {"title": "For Ada"}}),
+    ],
+)
+def test_a_document_that_is_named_and_sent_as_well_is_refused_at_its_place(
+    shop: Shop, kind: str, order: dict[str, Any]
+) -> None:
+    form = {"tune": (BytesIO(TUNE), "tune.mid"), "order": json.dumps(order), kind: (BytesIO(b"{}"), f"{kind}.json")}
+
+    told = problem_of(shop.http.post("/v1/orders", data=form, headers=shop.web), "document-invalid")
+
+    [fault] = told["invalid_params"]
+    assert fault["pointer"] == f"/{kind}"
+    assert "given twice, here and as a part" in fault["detail"]
+
+
+@pytest.mark.parametrize("asked", ["lines=1-2", "bytes=0-1,4-5", "bytes"])
+def test_a_range_that_is_not_understood_is_as_if_it_were_not_there(shop: Shop, asked: str) -> None:
+    order_id = shop.ready()
+    address = f"/v1/orders/{order_id}/plans/1/files/1/record.dxf"
+    whole = shop.http.get(address, headers=shop.web).get_data()
+
+    answer = shop.http.get(address, headers={**shop.web, "Range": asked})
+
+    assert (answer.status_code, answer.get_data()) == (200, whole)

@@ -7,10 +7,13 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from flask import Flask
+from werkzeug.exceptions import BadGateway, BadRequest, HTTPException
 from werkzeug.test import TestResponse
 
 from layout.errors import Problem as Fault
 from layout.errors import RulingError
+from service.api.failures import answer_failures
 from service.api.problems import PROBLEMS
 from service.limits import Limits
 from tests.service.api.conftest import ClientFor
@@ -346,3 +349,26 @@ def test_every_kind_of_problem_has_a_test() -> None:
 
 def test_a_page_of_no_kind_of_problem(client: Client) -> None:
     refuse(client.get("/problems/unlucky"), "route-unknown", "no kind of problem is called 'unlucky'")
+
+
+@pytest.mark.parametrize(
+    ("refusal", "status", "name", "detail"),
+    [
+        (BadRequest("the head of a part is broken"), 400, "request-malformed", "the head of a part is broken"),
+        (BadGateway("geheim"), 500, "internal-error", "the service failed; its log holds the trace"),
+    ],
+)
+def test_what_a_library_refuses_is_told_in_words_and_what_it_fails_in_is_the_service_s_fault(
+    refusal: HTTPException, status: int, name: str, detail: str
+) -> None:
+    app = Flask("odd", static_folder=None)
+    answer_failures(app, Limits())
+
+    @app.get("/")
+    def refuse() -> None:
+        raise refusal
+
+    answer = app.test_client().get("/")
+
+    told: Any = answer.json
+    assert (answer.status_code, told["type"], told["detail"]) == (status, f"/problems/{name}", detail)

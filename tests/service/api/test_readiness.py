@@ -108,3 +108,18 @@ def test_a_part_that_is_back_is_ready_again_after_a_moment(parts: Parts) -> None
 
     time.sleep(TOLD_AGAIN_S + 0.1)
     assert client.get("/readyz").status_code == 200
+
+
+def test_a_part_that_fails_in_a_way_nobody_foresaw_is_away_and_its_words_are_not_told(
+    parts: Parts, caplog: pytest.LogCaptureFixture
+) -> None:
+    class Odd:
+        def check(self) -> None:
+            raise ZeroDivisionError("geheim")
+
+    answer = client_of(replace(parts, files=Odd())).get("/readyz")  # type: ignore[arg-type]
+
+    problem_of(answer, "not-ready")
+    assert answer.json["away"] == ["files"]  # type: ignore[index]  # an answer in JSON
+    assert "files: ZeroDivisionError" in caplog.text
+    assert "geheim" not in caplog.text + answer.text

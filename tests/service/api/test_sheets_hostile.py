@@ -9,6 +9,7 @@ from werkzeug.test import TestResponse
 
 from layout.documents.sheets import LIMITS
 from service.api.problems import PROBLEMS
+from service.limits import Limits
 from tests.layout.sheets.drawn import RIM_MM, disc_dxf
 from tests.service.fakes import Client
 
@@ -262,3 +263,12 @@ def test_every_limit_of_a_sheet_job_is_told(client: Client) -> None:
 
     assert {f"sheet_job_{name}" for name in LIMITS.__dataclass_fields__} <= told
     assert {"sheet_form_bytes", "sheet_job_least_disc_mm"} <= told
+
+
+def test_a_job_in_a_form_may_be_no_longer_than_one_alone(client: Client) -> None:
+    job = {**JOB, "title": "x" * Limits().document_bytes}
+
+    told = refused(post(client, form(("drawing-dance", DISC), job=job)))
+
+    assert told["type"] == "/problems/upload-too-large"
+    assert "the sheet job" in told["detail"]

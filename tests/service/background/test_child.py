@@ -7,9 +7,13 @@ import time
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 import pytest
 
+from layout.documents import read_settings, shipped_cutter, shipped_movement
+from service.background import child as child_module
+from service.background import planning_child
 from service.background.frames import read_frame, write_frame
 from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest, answer_from_json, as_json
 from service.background.planning_child import (
@@ -19,9 +23,13 @@ from service.background.planning_child import (
     ChildUnwantedError,
     PlanningChild,
 )
+from service.background.stage_watch import StageWatch, TimedKeeper, TimedPlanner
+from service.orders.test_tunes import Deed, state_tunes
 from service.parts import Parts
+from service.store.faults import StoreBusyError
 from service.store.holds import FileKeeper
 from tests.faults.ordering import CUTTER, MOVEMENT, PlansHere, tune_called
+from tests.faults.planner import QuietPlanner
 from tests.service.conftest import parts_of, sqlite_first
 
 MEMORY_MIB = 300
@@ -283,3 +291,67 @@ sys.stdout.write(f"{child.pid}\\n")
 sys.stdout.flush()
 child.plan(eval(sys.argv[2]), 60.0, lambda: True)
 """
+
+
+def test_a_child_whose_store_does_not_answer_says_that_the_order_can_be_planned_later(request_for: Requests) -> None:
+    class Away:
+        def read(self, digest: str) -> bytes:
+            raise StoreBusyError("the file could not be read")
+
+    answer = child_module._planned(request_for(tune_called("Harvest")), QuietPlanner(), Away())  # type: ignore[arg-type]
+
+    assert (answer.kind, answer.reason) == (Kind.AWAY, "the file could not be read")
+
+
+def test_a_child_that_closes_its_pipe_and_lives_on_is_gone(setup: ChildSetup, monkeypatch: pytest.MonkeyPatch) -> None:
+    lines = "import os, time; os.close(0); os.close(1); time.sleep(60)"
+    monkeypatch.setattr(planning_child, "CHILD", (sys.executable, "-c", lines))
+    monkeypatch.setattr(planning_child, "ENDING_S", 0.2)
+
+    with pytest.raises(ChildEndedError, match=r"^its process ended with code 0$"):
+        PlanningChild(setup)
+
+
+class Telling:
+    """A planner that tells what it is asked."""
+
+    def __getattr__(self, name: str) -> Callable[..., Any]:
+        return lambda *arguments, **named: (name, arguments, named)
+
+
+def test_a_planner_that_is_watched_answers_as_it_does_and_each_stage_is_timed() -> None:
+    watch = StageWatch()
+    watched, planner = TimedPlanner(Telling(), watch), Telling()  # type: ignore[arg-type]
+    movement, cutter, settings = shipped_movement("fernhollow-31"), shipped_cutter("fibre-laser"), read_settings("{}")
+    asked = (b"tune", movement, cutter, settings)
+
+    assert watched.fingerprint_of(*asked, 2) == planner.fingerprint_of(*asked, 2)
+    assert watched.check_drawing(b"dxf", movement, cutter) == planner.check_drawing(b"dxf", movement, cutter)
+    assert watch.took_s == {}
+    assert watched.lay_out_discs(*asked, None, most_s=5.0) == planner.lay_out_discs(*asked, None, most_s=5.0)
+    assert watched.files_of("disc", not_good="why") == planner.files_of("disc", not_good="why")
+    assert watched.told_of("disc", not_good="why") == planner.told_of("disc", not_good="why")
+    assert watch.took_s.keys() == {"laying-out", "files"}
+
+
+def test_a_keeper_that_is_watched_reads_as_it_does(shared_parts: Parts) -> None:
+    keeper = FileKeeper(shared_parts.store, shared_parts.files)
+    watch = StageWatch()
+    watched = TimedKeeper(keeper, watch)
+
+    [digest] = watched.keep([b"kept and timed"])
+
+    assert watched.read(digest) == b"kept and timed"
+    assert watch.took_s.keys() == {"keeping"}
+
+
+@of_a_process
+def test_a_child_refuses_the_tune_that_asks_for_it_where_a_test_key_ordered_it_and_plans_it_for_others(
+    setup: ChildSetup, request_for: Requests
+) -> None:
+    [tune] = [one.content for one in state_tunes() if one.deed is Deed.REFUSE]
+    asked = request_for(tune)
+
+    kinds, _ = answers_of_one_let_go(as_json(setup), as_json(asked), as_json(replace(asked, is_test=True)))
+
+    assert kinds == [Kind.WARM, Kind.PLANNED, Kind.REFUSED]

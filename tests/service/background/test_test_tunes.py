@@ -1,6 +1,9 @@
 """The test tunes: each leads an order of a test key, planned by a real worker, to the state it promises."""
 
+import hashlib
 import io
+import os
+import signal
 import time
 
 import mido
@@ -8,10 +11,12 @@ import pytest
 
 from layout.documents import shipped_cutter_ids, shipped_movement_ids
 from service.access.asker import Asker
+from service.background import test_deeds
+from service.background.messages import PlanRequest
 from service.background.worker import Worker
 from service.orders.asked import AskedOrder, NamedDocument
 from service.orders.states import State
-from service.orders.test_tunes import REFUSAL, Deed, StateTune, state_tunes
+from service.orders.test_tunes import REFUSAL, SLOW_S, Deed, StateTune, state_tunes
 from service.parts import Parts
 from tests.faults.ordering import look
 from tests.service.background.test_worker import send, wait_for, wait_for_state, with_work
@@ -108,3 +113,32 @@ def test_each_is_a_midi_file_of_its_own(name: str) -> None:
     assert read.tracks[0].name.startswith("Test: ")
     assert read.length == len([message for message in read if message.type == "note_on"]) * 0.5
     assert len({tune.content for tune in TUNES.values()}) == len(TUNES)
+
+
+def request(name: str, *, is_test: bool) -> PlanRequest:
+    digest = hashlib.sha256(TUNES[name].content).hexdigest()
+    return PlanRequest(
+        order_id="order_1", tune=digest, movement="", cutter="", settings="", not_good=None, is_test=is_test
+    )
+
+
+@pytest.mark.parametrize(
+    ("name", "done", "refusal"),
+    [
+        ("ready", [], None),
+        ("failed", [], REFUSAL),
+        ("slow", [("sleep", SLOW_S)], None),
+        ("killed", [("kill", os.getpid(), signal.SIGKILL)], None),
+    ],
+)
+def test_a_child_does_what_a_tune_asks_for_where_a_test_key_ordered_it_and_else_nothing(
+    monkeypatch: pytest.MonkeyPatch, name: str, done: list[tuple[object, ...]], refusal: str | None
+) -> None:
+    seen: list[tuple[object, ...]] = []
+    monkeypatch.setattr(test_deeds.time, "sleep", lambda *given: seen.append(("sleep", *given)))
+    monkeypatch.setattr(test_deeds.os, "kill", lambda *given: seen.append(("kill", *given)))
+
+    assert test_deeds.act_out(request(name, is_test=False)) is None
+    assert seen == []
+    assert test_deeds.act_out(request(name, is_test=True)) == refusal
+    assert seen == done

@@ -14,12 +14,16 @@ import pytest
 from sqlalchemy import update
 
 from layout import walk
-from service.background.chores import Chore
+from service.background import holding, sweeping
+from service.background.chores import Chore, start_chores
+from service.background.holding import Holding
 from service.background.queue import Queue
+from service.background.sweeping import LEAST_S, OFFERS_OF_A_SLOT, Sweep
 from service.background.worker import Worker
 from service.orders import taking
 from service.orders.states import State
 from service.parts import Parts
+from service.store.faults import StoreBusyError
 from service.store.tables import Order
 from tests.faults.ordering import PlansHere, assert_planned_once, look, place, states, tune_called
 from tests.service.shop import TUNE, open_shop
@@ -345,3 +349,83 @@ def test_a_worker_does_its_chores_though_one_goes_wrong(shop: Parts, caplog: pyt
 
     told = [record.getMessage() for record in caplog.records if record.levelname == "ERROR"]
     assert told.count("the chore 'first' went wrong; it is done again in 0.05 s") > 1
+
+
+def test_a_second_signal_hurries_a_worker_that_stops() -> None:
+    lines = (
+        "import os, signal, threading; from service.background.worker import work_until_told\n"
+        "class Slow:\n"
+        "    def start(self): pass\n"
+        "    def stop(self, hurry):\n"
+        "        calm = hurry.is_set()\n"
+        "        os.kill(os.getpid(), signal.SIGTERM)\n"
+        "        return (calm, hurry.wait(10))\n"
+        "print(work_until_told(Slow(), lambda: os.kill(os.getpid(), signal.SIGTERM)))\n"
+    )
+
+    ended = subprocess.run([sys.executable, "-c", lines], capture_output=True, text=True, timeout=30, check=True)
+
+    assert ended.stdout == "(False, True)\n"
+
+
+def test_what_the_sweep_found_and_gave_out_is_looked_for_again_after_a_second_and_not_sooner(
+    shop: Parts, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
+    placed = {place(shop, tune_called(f"Tune {number}")) for number in range(OFFERS_OF_A_SLOT + 1)}
+    now_s = [100.0]
+    monkeypatch.setattr(sweeping.time, "monotonic", lambda: now_s[0])
+    sweep = Sweep(shop.store, 1)
+
+    sweep.sweep()
+    first = [sweep.next_found() for _ in range(OFFERS_OF_A_SLOT)]
+    sweep.sweep_on()
+    too_soon = sweep.next_found()
+    for order_id in first:
+        assert order_id is not None
+        assert taking.take(shop.store, order_id, worker="a worker", lease_s=60, most_attempts=3) is not None
+    now_s[0] += LEAST_S
+    sweep.sweep_on()
+
+    assert too_soon is None
+    assert {*first, sweep.next_found()} == placed
+    place(shop, tune_called("One that comes late"))
+    now_s[0] += LEAST_S
+    sweep.sweep_on()
+    assert sweep.next_found() is None  # the last look found fewer than it may: what comes now has a message
+
+
+def test_an_order_that_is_lost_is_not_renewed_and_others_are(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    renewed: list[str] = []
+    monkeypatch.setattr(holding, "renew", lambda _store, held, _lease_s: renewed.append(held.order_id) is None)
+    order_ids = [place(shop, tune_called(name)) for name in ("Harvest", "Sowing")]
+    lost, kept = (
+        taking.take(shop.store, order_id, worker="a worker", lease_s=60, most_attempts=3) for order_id in order_ids
+    )
+    assert lost is not None
+    assert kept is not None
+    held = Holding(shop.store, lease_s=60)
+
+    with held.hold(lost) as first, held.hold(kept):
+        first.lost.set()
+        held.renew_all()
+
+    assert renewed == [kept.order_id]
+
+
+def test_a_chore_that_finds_no_database_is_done_again(shop: Parts, caplog: pytest.LogCaptureFixture) -> None:
+    done, again = [], threading.Event()
+
+    def sweep() -> None:
+        done.append(1)
+        if len(done) == 1:
+            raise StoreBusyError("the database does not answer")
+        again.set()
+
+    stopping = threading.Event()
+    [thread] = start_chores([Chore(name="tidy", every_s=0.01, work=sweep)], stopping)
+    assert again.wait(20)
+    stopping.set()
+    thread.join(20)
+
+    assert "the chore 'tidy' is done again in 0.01 s: the database does not answer" in caplog.messages

@@ -1,7 +1,9 @@
 """How the client sends: again where that helps and is safe, never where it is not; the generated part is up to date."""
 
+import io
 import json
 import re
+import sys
 import threading
 from collections.abc import Iterator
 from dataclasses import dataclass, field
@@ -10,9 +12,11 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+import urllib3
 
 from service.client import generate
-from service.client.calling import AwayError, Caller, Form, ProblemError, once, place
+from service.client.calling import Answer, AwayError, Caller, Fields, Form, ProblemError, once, place
+from service.client.client import Client, WaitedTooLongError
 from service.describe import document_here
 
 HERE = Path(generate.__file__).parent
@@ -169,3 +173,98 @@ def test_the_client_imports_nothing_else_of_this_program() -> None:
 
     assert {name for name in imported if not name.startswith("service.client")} == set()
     assert "service.client.calling" in imported
+
+
+def test_fields_are_sent_as_a_form_of_a_page(script: Script, url: str) -> None:
+    script.answers = [GOOD]
+
+    caller_of(url, []).send("POST", "/sign-in", body=Fields({"key": "dw_a b&c"}))
+
+    [(_, _, headers, body)] = script.seen
+    assert (headers["content-type"], body) == ("application/x-www-form-urlencoded", b"key=dw_a+b%26c")
+
+
+@pytest.mark.parametrize("told", ["no object", ["no", "object"]])
+def test_a_refusal_that_tells_no_problem_is_told_by_its_status(script: Script, url: str, told: Any) -> None:
+    script.answers = [(502, {"Request-Id": "r-1"}, told)]
+
+    with pytest.raises(ProblemError, match=r"^502 : no detail was told \(r-1\)$"):
+        caller_of(url, []).send("GET", "/v1/orders")
+
+
+def test_a_refusal_that_is_no_json_is_told_by_its_status() -> None:
+    class Between:
+        def request(self, *_: object, **__: object) -> urllib3.HTTPResponse:
+            return urllib3.HTTPResponse(b"<html>Bad gateway</html>", status=502)
+
+    caller = Caller("https://discs.example", None)
+    caller._pool = Between()  # type: ignore[assignment]  # all that is asked of it
+
+    with pytest.raises(ProblemError, match=r"^502 : no detail was told \(no request id\)$"):
+        caller.send("GET", "/v1/orders")
+
+
+def test_the_generator_writes_both_packages_and_nothing_of_what_was(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(generate, "__file__", str(tmp_path / "generate.py"))
+    (tmp_path / "shapes").mkdir()
+    (tmp_path / "shapes" / "forgotten.py").write_text("")
+    (tmp_path / "openapi.json").write_text(json.dumps(DOCUMENT))
+
+    assert generate.main([str(tmp_path / "openapi.json")]) == 0
+
+    for package in ("shapes", "operations"):
+        made = {path.name: path.read_text() for path in (tmp_path / package).iterdir()}
+        assert made == {path.name: path.read_text() for path in (HERE / package).glob("*.py")}
+
+
+def test_the_generator_takes_the_document_from_its_input_too(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(generate, "__file__", str(tmp_path / "generate.py"))
+    monkeypatch.setattr(sys, "stdin", io.StringIO(json.dumps(DOCUMENT)))
+
+    assert generate.main(["-"]) == 0
+
+    assert (tmp_path / "operations" / "orders.py").read_text() == (HERE / "operations" / "orders.py").read_text()
+
+
+def test_the_generator_without_a_document_says_how_it_is_used(capsys: pytest.CaptureFixture[str]) -> None:
+    assert generate.main([]) == 2
+
+    assert capsys.readouterr().err == generate.USAGE
+
+
+def answers_in_turn(*answers: Answer) -> Client:
+    """A client to whom these are answered in turn, the last again and again."""
+    left = list(answers)
+    caller = Caller("https://discs.example", None)
+
+    def send(*_: object, **__: object) -> Answer:
+        return left.pop(0) if len(left) > 1 else left[0]
+
+    caller.send = send  # type: ignore[method-assign]
+    return Client("https://discs.example", caller=caller)
+
+
+def order_in(state: str, **headers: str) -> Answer:
+    return Answer(status=200, headers={"etag": '"1"', **headers}, body=json.dumps({"state": state}).encode())
+
+
+def test_an_order_that_is_waited_for_too_long_is_told_with_where_it_stands() -> None:
+    client = answers_in_turn(order_in("planning", **{"preference-applied": "wait=0"}))
+
+    with pytest.raises(WaitedTooLongError, match=r"^the order order_1 is planning after 0 s$"):
+        client.wait_for("order_1", frozenset({"ready"}), within_s=0)
+
+
+def test_where_the_service_has_no_place_to_wait_the_client_looks_again_by_itself(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    slept: list[float] = []
+    monkeypatch.setattr("service.client.client.time.sleep", slept.append)
+    unchanged = Answer(status=304, headers={}, body=b"")
+    client = answers_in_turn(order_in("planning"), unchanged, order_in("ready"))
+
+    assert client.wait_for("order_1", frozenset({"ready"}), within_s=60) == {"state": "ready"}
+
+    assert slept == [1.0, 1.0]

@@ -1,6 +1,7 @@
 import json
 from dataclasses import asdict, replace
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -192,3 +193,20 @@ def test_what_is_no_drawing_is_one_line_and_exit_2(
     told = capsys.readouterr()
     assert (code, told.out, told.err.count("\n")) == (2, "", 1)
     assert told.err.startswith("discwright: ")
+
+
+def test_a_drawing_without_projections_has_no_first_and_no_last_pluck(
+    discwright: Discwright, drawing: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    class Silent(FakePlanner):
+        def check_drawing(self, dxf: bytes, movement: Any, cutter: Any) -> Any:
+            reading = super().check_drawing(dxf, movement, cutter)
+            no_track, none = np.zeros(0, dtype=np.int64), np.zeros(0)
+            disc = replace(reading.disc, track_index=no_track, radius_mm=none, edge_angle_rad=none)
+            return replace(reading, disc=disc, plucks=FakePlucks(track_index=no_track, sounds_s=none))
+
+    main(["check", str(drawing), "--movement", "fernhollow-31"], planner=Silent())
+
+    told = capsys.readouterr().out
+    assert "  plays       0 plucks on 0 of 31 tracks" in told
+    assert "first pluck" not in told

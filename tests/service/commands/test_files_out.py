@@ -1,6 +1,7 @@
 """The one way in which commands write their folders: whole or not at all, cutting files last, strangers left alone."""
 
 import errno
+import fcntl
 import os
 from pathlib import Path
 
@@ -71,3 +72,51 @@ def test_a_folder_where_a_file_should_stand_is_told_before_anything_is_written(t
 def test_a_null_character_in_a_path_is_told() -> None:
     with pytest.raises(CommandError, match="cannot be made: embedded null"):
         write_folders({Path("a\0b"): FILES}, cutting=CUTTING)
+
+
+def half_written(folder: Path) -> Path:
+    """What one that was killed leaves."""
+    left = folder / ".discwright-abc"
+    left.mkdir()
+    (left / "cut.dxf").write_bytes(b"half")
+    return left
+
+
+def test_what_one_that_was_killed_left_half_written_goes_when_its_folder_is_written_to_again(tmp_path: Path) -> None:
+    half_written(tmp_path)
+
+    write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert {path.name: path.read_bytes() for path in tmp_path.iterdir()} == FILES
+
+
+def test_what_another_is_writing_at_this_moment_is_left_alone(tmp_path: Path) -> None:
+    left = half_written(tmp_path)
+    held = os.open(left, os.O_RDONLY)
+    fcntl.flock(held, fcntl.LOCK_EX)
+
+    write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert (left / "cut.dxf").read_bytes() == b"half"
+    os.close(held)
+
+
+def test_a_folder_in_which_files_are_being_written_is_held(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    held: list[bool] = []
+    write_bytes = Path.write_bytes
+
+    def look(path: Path, content: bytes) -> int:
+        lock = os.open(path.parent, os.O_RDONLY)
+        try:
+            fcntl.flock(lock, fcntl.LOCK_EX | fcntl.LOCK_NB)
+            held.append(False)
+        except BlockingIOError:
+            held.append(True)
+        finally:
+            os.close(lock)
+        return write_bytes(path, content)
+
+    monkeypatch.setattr(Path, "write_bytes", look)
+    write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert held == [True, True]

@@ -8,6 +8,7 @@ import pytest
 import symusic
 
 from layout.documents import shipped_movement
+from layout.documents.shipped import shipped_text
 from service.commands.main import main
 from service.demo.compose import demo_tune
 from tests.layout.hear.sounds import read_wav
@@ -129,3 +130,15 @@ def test_the_first_and_the_last_turn_of_a_stated_winding_differ_in_length(tune: 
         lengths[turn] = read_midi(out).end()
 
     assert lengths["first"] < lengths["last"]
+
+
+def test_where_a_movement_states_how_long_its_teeth_ring_nothing_is_assumed(
+    tune: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    movement = tune.parent / "movement.json"
+    stated = {**json.loads(shipped_text("fernhollow-31")), "tooth_quality": 400}
+    movement.write_text(json.dumps(stated))
+
+    assert hear(tune, tune.parent / "dance.mid.mid", movement=str(movement)) == 0
+
+    assert "assumed" not in capsys.readouterr().out

@@ -2,15 +2,18 @@
 
 import json
 import re
+from datetime import timedelta
 from typing import Any
 
 import pytest
 
 from service.access.first_start import FirstKey
-from service.access.keys import find_key
+from service.access.keys import find_key, note_use
 from service.access.scopes import Scope
 from service.commands import keys
+from service.moments import utc_now
 from service.parts import Parts
+from service.store.faults import StoreBusyError
 from tests.service.commands.conftest import Discwright
 from tests.service.conftest import each_case_on_both
 
@@ -183,3 +186,27 @@ def test_the_help_tells_what_each_scope_allows(
     out = capsys.readouterr().out
     assert ended.value.code == 0
     assert all(re.search(rf"^  {scope} +\S", out, flags=re.MULTILINE) for scope in Scope)
+
+
+@pytest.mark.parametrize(
+    ("ago", "told"),
+    [(timedelta(seconds=90), r"just now"), (timedelta(days=2), r"\d{4}-\d\d-\d\d \d\d:\d\d UTC")],
+)
+def test_when_a_key_was_last_used_is_told(run: Any, any_parts: Parts, ago: timedelta, told: str) -> None:
+    secret = json.loads(run("add", "bench", "--scopes", "read", "--json")[1])["secret"]
+    key = find_key(any_parts.store, secret)
+    assert key is not None
+    note_use(any_parts.store, key, utc_now() - ago)
+
+    [_, row] = run("list")[1].splitlines()
+
+    assert re.fullmatch(told, re.split(r"\s{2,}", row)[4])
+
+
+def test_a_database_that_stops_answering_is_told_in_one_line(run: Any, monkeypatch: pytest.MonkeyPatch) -> None:
+    def no_answer(*_: object, **__: object) -> None:
+        raise StoreBusyError("the database does not answer; try again in a moment")
+
+    monkeypatch.setattr(keys, "revoke_for_good", no_answer)
+
+    assert run("revoke", NEVER_MADE) == (2, "", "discwright: the database does not answer; try again in a moment\n")

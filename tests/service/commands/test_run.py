@@ -349,3 +349,16 @@ def test_ctrl_c_leaves_whole_folders_and_says_how_to_go_on(tunes: Path, tmp_path
     assert "Traceback" not in told
     assert len({frozenset(path.name for path in folder.iterdir()) for folder in folders}) == 1
     assert not (out / "run.json").exists()
+
+
+def test_a_list_that_cannot_be_written_is_told_in_one_line_and_the_discs_stay(
+    run: Run, tunes: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    out = tmp_path / "discs"
+    (out / "run.json").mkdir(parents=True)
+
+    code = run(tunes, *MOVEMENT, "--out", out)
+
+    assert code == 2
+    assert capsys.readouterr().err.splitlines()[-1] == f"discwright: cannot write to '{out}': Is a directory"
+    assert len(list(out.rglob("disc.dxf"))) == 2

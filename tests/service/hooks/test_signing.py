@@ -139,3 +139,10 @@ def test_a_body_changed_by_one_letter_is_refused() -> None:
 
     with pytest.raises(SignatureError):
         verify(headers, b'{"a":2}', secret=secret, now=NOW)
+
+
+def test_a_secret_that_is_none_of_ours_is_told_as_such() -> None:
+    headers = signed_headers("msg_1", b"{}", at=NOW, valid_secrets=[new_secret()])
+
+    with pytest.raises(SignatureError, match=r"^the secret is not whsec_ and base64$"):
+        verify(headers, b"{}", secret="whsec_no/base64!", now=NOW)

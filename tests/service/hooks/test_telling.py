@@ -8,12 +8,17 @@ from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
+import pytest
+
+from service.hooks import telling as telling_module
 from service.hooks.deliveries import count_deliveries
 from service.hooks.telling import tell_hooks
 from service.limits import HOOK_LIMITS
 from service.parts import Parts
 from service.settings import WorkSettings
+from service.store.faults import StoreBusyError
 from tests.service.conftest import environment_of
 from tests.service.hooks.receivers import Got, Receiver, listening
 from tests.service.hooks.rows import add_owner, make_hook, place, reaching_loopback
@@ -200,3 +205,104 @@ def test_what_is_being_sent_is_seen_to_its_end(parts: Parts) -> None:
             assert becomes_true(lambda: len(receiver.got) == 1)
 
     assert counts(parts)["delivered"] == 1
+
+
+def out_of_order(sender: Any, name: str, fault: Exception, times: int = 1) -> None:
+    """Let a method of something fail so many times."""
+    real, left = getattr(sender, name), [fault] * times
+
+    def fail_first(*arguments: Any, **named: Any) -> Any:
+        if left:
+            raise left.pop()
+        return real(*arguments, **named)
+
+    setattr(sender, name, fail_first)
+
+
+@pytest.mark.parametrize(
+    ("fault", "told"),
+    [
+        (StoreBusyError("the database does not answer"), "hooks are not told at the moment: the database does not"),
+        (ZeroDivisionError(), "looking for messages to hooks failed; it is tried again"),
+    ],
+)
+def test_hooks_are_told_after_looking_for_messages_has_failed(
+    parts: Parts, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture, fault: Exception, told: str
+) -> None:
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    monkeypatch.setattr(telling_module, "due", telling_module.due)  # put back after the test
+    out_of_order(telling_module, "due", fault)
+    with listening(Receiver()) as receiver:
+        make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: counts(parts)["delivered"] == 1)
+
+    assert told in caplog.text
+
+
+@pytest.mark.parametrize(
+    ("fault", "told"),
+    [
+        (StoreBusyError("it does not answer"), "could not be written, so it will be sent again: it does not answer"),
+        (ZeroDivisionError(), "failed; it will be tried again"),
+    ],
+)
+def test_a_message_whose_sending_went_wrong_is_told_and_others_go_out(
+    parts: Parts, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture, fault: Exception, told: str
+) -> None:
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    monkeypatch.setattr(telling_module, "send", telling_module.send)  # put back after the test
+    out_of_order(telling_module, "send", fault)
+    with listening(Receiver()) as receiver:
+        make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: counts(parts)["delivered"] == 1)
+
+    assert told in caplog.text
+    assert counts(parts)["waiting"] == 1
+
+
+def test_a_hook_that_asked_for_none_any_more_is_off_though_that_cannot_be_noted(
+    parts: Parts, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture
+) -> None:
+    def no_answer(*_: object) -> None:
+        raise StoreBusyError("the folder of files is not there")
+
+    parts = reaching_loopback(parts)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    monkeypatch.setattr(telling_module, "note_stopped", no_answer)
+    with listening(Receiver(answer=lambda _got: (410, {}))) as receiver:
+        made = make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: counts(parts)["waiting"] == 0)
+
+    assert f"it is noted with the next backup alone that hook {made.hook.id} is off" in caplog.text
+
+
+def test_no_more_messages_are_sent_at_a_time_than_there_are_places(
+    parts: Parts, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(telling_module, "HOOK_LIMITS", replace(HOOK_LIMITS, at_a_time=1, look_every_s=1))
+    parts = reaching_loopback(parts, timeout_s=30)
+    shop = add_owner(parts, "the shop", is_shop=True)
+    never = threading.Event()
+
+    def hang(_got: Got) -> tuple[int, dict[str, str]]:
+        never.wait(30)
+        return 200, {}
+
+    with listening(Receiver(answer=hang)) as receiver:
+        make_hook(parts, shop, receiver.url)
+        place(parts, shop)
+        place(parts, shop)
+        with telling(parts):
+            assert becomes_true(lambda: len(receiver.got) == 1)
+            assert not becomes_true(lambda: len(receiver.got) > 1, within_s=1.5)
+            never.set()
+            assert becomes_true(lambda: counts(parts)["delivered"] == 2)

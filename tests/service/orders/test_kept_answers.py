@@ -3,12 +3,16 @@
 import threading
 import time
 from collections.abc import Iterator
+from contextlib import AbstractContextManager
+from dataclasses import replace
 
 import pytest
+from sqlalchemy.orm import Session
 
 from service.orders import kept_answers
 from service.orders.kept_answers import AskedOnce, Claim, StillRunningError, claim_or_answer, keep_answer, renewed
 from service.parts import Parts
+from service.store.faults import StoreBusyError
 from tests.service.shop import WEB_SHOP, open_shop
 
 CLAIMED_S = 0.6
@@ -63,3 +67,33 @@ def test_a_claim_that_was_taken_over_writes_no_answer_and_renews_nothing(shop: P
 
     third = claimed(shop)  # the second's had run out: the first's renewals are not its own
     assert len({first.token, second.token, third.token}) == 3
+
+
+def test_a_key_whose_answer_was_kept_as_long_as_stated_is_free_for_another_request(shop: Parts) -> None:
+    claim_or_answer(shop.store, ASKED, kept_days=0)
+
+    another = claim_or_answer(shop.store, replace(ASKED, digest="1" * 64), kept_days=30)
+
+    assert isinstance(another, Claim)
+
+
+def test_a_claim_is_renewed_again_after_the_database_did_not_answer(
+    shop: Parts, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture
+) -> None:
+    claim = claimed(shop)
+    faults = [StoreBusyError("the database does not answer")]
+    writing = shop.store.writing
+
+    def writing_later() -> AbstractContextManager[Session]:
+        if faults:
+            raise faults.pop()
+        return writing()
+
+    monkeypatch.setattr(shop.store, "writing", writing_later)
+    with renewed(shop.store, claim):
+        time.sleep(1.5 * CLAIMED_S)
+        monkeypatch.undo()
+        with pytest.raises(StillRunningError):
+            claim_or_answer(shop.store, ASKED, kept_days=30)
+
+    assert "the claim of an Idempotency-Key could not be renewed: the database does not answer" in caplog.messages

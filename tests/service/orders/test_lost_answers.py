@@ -8,12 +8,26 @@ from typing import Any
 import pytest
 from sqlalchemy import select
 
+from service.orders.asked import AskedRepeat, NamedDocument
 from service.orders.deciding import Seen, cancel_order
 from service.orders.placing import nothing_more
+from service.orders.repeating import repeat_order
+from service.orders.running import AskedRun, Pair, begin_run
 from service.parts import Parts
 from service.store.faults import StoreBusyError
-from service.store.tables import Event, Order
-from tests.service.shop import WEB_SHOP, open_shop, placed, plan_of, planned, taken
+from service.store.tables import Event, Order, Run
+from tests.service.shop import (
+    TUNE,
+    WEB_SHOP,
+    archive_of,
+    keeper_of,
+    open_shop,
+    placed,
+    plan_of,
+    planned,
+    release_seen,
+    taken,
+)
 
 Losing = Callable[[int], None]
 
@@ -103,3 +117,30 @@ def test_an_order_placed_as_the_connection_is_lost_is_placed_once(shop: Parts, l
         assert session.scalars(select(Order.id)).all() == [order.id]
         kinds = session.scalars(select(Event.type).order_by(Event.seq)).all()
     assert kinds == ["order.received", "order.planned", "order.ready"]
+
+
+def test_an_order_repeated_as_the_connection_is_lost_is_repeated_once(shop: Parts, lose_next: Losing) -> None:
+    first = placed(shop)
+    planned(shop, first.id)
+    release_seen(shop, first.id)
+    lose_next(0)
+
+    order = repeat_order(shop.store, WEB_SHOP, AskedRepeat(repeat_of=first.id), nothing_more)
+
+    with shop.store.reading() as session:
+        assert set(session.scalars(select(Order.id))) == {first.id, order.id}
+
+
+def test_a_run_begun_as_the_connection_is_lost_is_begun_once(shop: Parts, lose_next: Losing) -> None:
+    fernhollow = NamedDocument(id="fernhollow-31")
+    asked = AskedRun(
+        archive=archive_of(a=TUNE),
+        pairs=(Pair(tune="a.mid", movement=fernhollow),),
+        cutter=NamedDocument(id="fibre-laser"),
+    )
+    lose_next(1)  # the first ends noting its file
+
+    run = begin_run(shop.store, keeper_of(shop), WEB_SHOP, asked, lambda _session, _run: None)
+
+    with shop.store.reading() as session:
+        assert session.scalars(select(Run.id)).all() == [run.id]

@@ -1,12 +1,16 @@
 """Planning anew: what is asked for is held by the order that was changed for it, and by nothing else."""
 
+import json
+from collections.abc import Mapping
+from typing import Any
+
 import pytest
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from service.orders.asked import AskedRepeat
 from service.orders.deciding import Seen, replan_order
-from service.orders.faults import ChangedMeanwhileError, StateForbidsError
+from service.orders.faults import ChangedMeanwhileError, InputRefusedError, StateForbidsError
 from service.orders.placing import Also, nothing_more
 from service.orders.repeating import repeat_order
 from service.orders.replanning import AskedAnew, columns_of
@@ -83,3 +87,26 @@ def test_a_repeat_holds_what_it_gives_and_nothing_of_the_plans_before(shop: Part
     assert before - anew
     assert held_for(shop, again.id) == anew | asked
     assert keeper_of(shop).read(row.settings_digest) == ANEW.settings
+
+
+def columns_for(parts: Parts, order_id: str, anew: AskedAnew) -> Mapping[str, Any]:
+    return columns_of(parts.store, keeper_of(parts), WEB_SHOP, order_id, anew)
+
+
+def test_another_revision_of_the_movement_is_planned_with_when_it_is_asked_for(shop: Parts) -> None:
+    order_id = placed(shop).id
+    planned(shop, order_id)
+
+    columns = columns_for(shop, order_id, AskedAnew(movement_revision=1, most_lost_share=0.25))
+
+    assert (columns["movement_revision"], columns["most_lost_share"]) == (1, 0.25)
+    movement = json.loads(shop.files.read(columns["movement_digest"]))
+    assert (movement["id"], movement["revision"]) == ("fernhollow-31", 1)
+
+
+def test_a_revision_that_the_movement_never_had_is_refused_by_its_number(shop: Parts) -> None:
+    order_id = placed(shop).id
+    planned(shop, order_id)
+
+    with pytest.raises(InputRefusedError, match=r"^there is no revision 7 of fernhollow-31$"):
+        columns_for(shop, order_id, AskedAnew(movement_revision=7))

@@ -14,6 +14,7 @@ from service.orders.asked import NamedDocument
 from service.orders.deciding import Seen, cancel_order
 from service.orders.erasing import erase_order
 from service.orders.placing import nothing_more
+from service.orders.run_archives import trim_archive
 from service.orders.run_opening import RunOpener
 from service.orders.run_views import RunView, find_run, items_of
 from service.orders.running import AskedRun, Pair, begin_run
@@ -137,3 +138,73 @@ def test_a_run_that_is_opened_has_nothing_to_lose(shop: Parts) -> None:
 
     with pytest.raises(FileLostError):
         shop.files.read(digest_of(shop, run.id))
+
+
+def test_an_archive_that_was_lost_stays_lost_and_the_order_is_deleted_all_the_same(shop: Parts) -> None:
+    run = begun(shop)
+    opener_of(shop).open_some()
+    digest = digest_of(shop, run.id)
+    shop.files.remove(digest)
+
+    erase(shop, orders_of(shop, run.id)[0])
+
+    assert digest_of(shop, run.id) == digest
+
+
+def test_an_archive_that_holds_nothing_else_is_left_as_it_is(shop: Parts) -> None:
+    run = begun(shop)
+    digest = digest_of(shop, run.id)
+
+    trim_archive(shop.store, shop.files, run.id)
+
+    assert digest_of(shop, run.id) == digest
+
+
+def replace_archive(parts: Parts, run_id: str, content: bytes) -> None:
+    """Let a run's archive be another."""
+    [digest] = keeper_of(parts).keep([content])
+    with parts.store.writing() as session:
+        session.execute(update(Run).where(Run.id == run_id).values(archive_digest=digest))
+
+
+def test_an_archive_that_is_damaged_leaves_nothing_of_itself(shop: Parts) -> None:
+    run = begun(shop)
+    opener_of(shop).open_some()
+    replace_archive(shop, run.id, b"PK no archive at all")
+
+    erase(shop, orders_of(shop, run.id)[0])
+
+    assert shop.files.read(digest_of(shop, run.id)) == b""
+
+
+def test_a_tune_that_is_damaged_is_left_out_and_the_others_stay(shop: Parts) -> None:
+    run = begun(shop)
+    opener_of(shop).open_some()
+    packed = archive_of(a=TUNE, b=TUNE, c=TUNE)
+    second = packed.index(TUNE[:20], packed.index(b"b.mid")) if TUNE[:20] in packed else packed.index(b"b.mid") + 20
+    replace_archive(shop, run.id, packed[:second] + bytes(8) + packed[second + 8 :])
+
+    erase(shop, orders_of(shop, run.id)[0])
+
+    assert tunes_kept(shop, run.id) == ["c.mid"]
+
+
+def test_an_archive_that_another_has_replaced_meanwhile_is_trimmed_once_more(
+    shop: Parts, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    run = begun(shop)
+    opener_of(shop).open_some()
+    read = shop.files.read
+    seen: list[str] = []
+
+    def read_meanwhile(digest: str) -> bytes:
+        content = read(digest)
+        if not seen:
+            seen.append(digest)
+            replace_archive(shop, run.id, archive_of(a=TUNE, b=TUNE, c=TUNE, d=TUNE))
+        return content
+
+    monkeypatch.setattr(shop.files, "read", read_meanwhile)
+    erase(shop, orders_of(shop, run.id)[0])
+
+    assert tunes_kept(shop, run.id) == ["b.mid", "c.mid"]

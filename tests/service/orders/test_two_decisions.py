@@ -5,8 +5,9 @@ import time
 from concurrent.futures import ThreadPoolExecutor
 
 import pytest
-from sqlalchemy import func, select
+from sqlalchemy import func, select, update
 
+from service.orders.changing import change
 from service.orders.deciding import Seen, cancel_order
 from service.orders.erasing import erase_order
 from service.orders.faults import ChangedMeanwhileError, OrderFault, StateForbidsError
@@ -14,7 +15,7 @@ from service.orders.placing import nothing_more
 from service.orders.states import State
 from service.orders.views import OrderView
 from service.parts import Parts
-from service.store.tables import Event
+from service.store.tables import Event, Order
 from tests.service.shop import WEB_SHOP, open_shop, placed
 
 HELD_S = 0.5  # s; that the first takes to commit, in which the second comes
@@ -81,3 +82,25 @@ def test_an_order_deleted_twice_at_a_time_is_deleted_once(shop: Parts) -> None:
     with shop.store.reading() as session:
         told = select(func.count()).where(Event.order_id == order.id, Event.type == "order.erased")
         assert session.scalars(told).one() == 1
+
+
+def test_a_change_to_an_order_that_another_has_changed_meanwhile_is_none(shop: Parts) -> None:
+    order_id = placed(shop).id
+    with shop.store.writing() as session:
+        order = session.get_one(Order, order_id)
+        others = update(Order).where(Order.id == order_id).values(version=order.version + 1)
+        session.execute(others, execution_options={"synchronize_session": False})
+
+        assert not change(session, order, State.CANCELLED, at=shop.store.now(session), columns={})
+
+    with shop.store.reading() as session:
+        assert session.get_one(Order, order_id).state == State.RECEIVED
+
+
+def test_a_state_that_cannot_follow_is_never_written(shop: Parts) -> None:
+    order_id = placed(shop).id
+    with shop.store.writing() as session:
+        order = session.get_one(Order, order_id)
+
+        with pytest.raises(ValueError, match=r"^ready cannot follow received$"):
+            change(session, order, State.READY, at=shop.store.now(session), columns={})

@@ -8,7 +8,7 @@ from typing import Any
 import pytest
 from flask.testing import FlaskClient
 
-from layout.documents import shipped_movement, shipped_text
+from layout.documents import read_movement, shipped_movement, shipped_text
 from service.access.scopes import Scope
 from service.pages.machines_comb import comb_chart
 from service.pages.machines_told import tracks_of, unit_of, values_of
@@ -180,3 +180,17 @@ def test_what_a_blank_has_more_than_one_of_stands_under_a_heading_each() -> None
         "Holes, slots and notches of the blank · 2",
     ]
     assert [row.name for row in disc.parts[1][1]][:2] == ["What for", "Shape"]
+
+
+def test_a_movement_that_the_usual_cutter_cannot_make_is_shown_with_its_repeats_all_the_same(
+    client: FlaskClient, own: dict[str, str]
+) -> None:
+    shipped = json.loads(shipped_text("fernhollow-31"))
+    document = {**shipped, "id": "ashbeck-31", "projection": {**shipped["projection"], "forming": "lance"}}
+    save(client, own, document)  # a laser lances nothing
+
+    page = client.get("/movements/ashbeck-31", headers={**HTML, **own})
+
+    assert page.status_code == 200
+    of_both = [tracks_of(read_movement(json.dumps(one))) for one in (document, shipped)]
+    assert of_both[0] == of_both[1]  # of the tab's own size

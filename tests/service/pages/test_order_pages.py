@@ -4,11 +4,13 @@ import json
 import re
 from collections.abc import Iterator
 from contextlib import closing
+from io import BytesIO
 from typing import Any
 
 import pytest
 from werkzeug.test import TestResponse
 
+from layout.documents.shipped import shipped_text
 from layout.file_names import CUTTING_FILES
 from layout.write.work_sheet.cautions import ALWAYS, LASER
 from service.access.scopes import Scope
@@ -18,11 +20,11 @@ from service.pages.orders_told import state_words
 from service.pages.texts import for_scripts, texts
 from service.parts import Parts
 from tests.service.api.guarded import bearing, new_key
-from tests.service.api.test_orders import NO_ROOM, Shop
+from tests.service.api.test_orders import MINE, NO_ROOM, Shop
 from tests.service.pages.browsing import on_both_databases
 from tests.service.pages.pages_read import Element, page_read
 from tests.service.pages.test_own_routes import HTML
-from tests.service.shop import planned, taken
+from tests.service.shop import TUNE, planned, taken
 
 SCRIPTS = {name: asset.content.decode() for name, asset in assets().items() if name.startswith("js/orders/")}
 FORMS = ("release", "proof-links", "reports", "replan", "repeat", "cancel", "erase")
@@ -386,3 +388,33 @@ def test_a_script_of_orders_imports_what_is_there_and_makes_nothing_of_strings(n
     assert not re.search(
         r"innerHTML =[^=]|outerHTML|insertAdjacentHTML|document\.write|\beval\(|new Function", SCRIPTS[name]
     )
+
+
+def planned_with(shop: Shop, **changes: Any) -> str:
+    """An order whose cutter is the fibre laser with changes; None leaves a field out."""
+    cutter = {**json.loads(shipped_text("fibre-laser")), "id": "bench-laser", **changes}
+    text = json.dumps({name: value for name, value in cutter.items() if value is not None}).encode()
+    form = {"tune": (BytesIO(TUNE), "tune.mid"), "order": json.dumps(MINE), "cutter": (BytesIO(text), "cutter.json")}
+    answer = shop.http.post("/v1/orders", data=form, headers=shop.web)
+    assert answer.status_code == 202, answer.text
+    order_id = str(answer.json["id"])  # type: ignore[index]  # an answer in JSON
+    planned(shop.parts, order_id)
+    return order_id
+
+
+def test_a_disc_whose_cutter_states_no_feeds_and_rates_has_no_time_and_no_price(shop: Shop) -> None:
+    told = part(order_seen(shop, planned_with(shop, feeds=None, rates=None)), "discs").text
+
+    assert "notes" in told
+    assert "to make" not in told
+    assert "EUR" not in told
+
+
+def test_a_disc_that_takes_hours_at_the_machine_says_so_in_hours(shop: Shop) -> None:
+    feeds = {"cut_mm_per_s": 0.5, "rapid_mm_per_s": 100, "pierce_s": 0.1, "mark_mm_per_s": 20}
+    order_id = planned_with(shop, feeds=feeds)
+
+    [disc] = shop.seen(order_id)["plan"]["discs"]
+
+    assert disc["time_s"] > 3600  # a second for each half millimetre
+    assert f"{disc['time_s'] / 3600:.1f} h" in part(order_seen(shop, order_id), "discs").text

@@ -190,3 +190,12 @@ def test_a_file_left_half_written_by_a_killed_process_is_never_seen(tmp_path: Pa
     assert files.sweep_parts() == 1
     assert files.put(b"x" * 1_000_000) == digest
     assert files.read(digest) == b"x" * 1_000_000
+
+
+def test_what_lies_among_the_notes_and_is_none_is_passed_over(tmp_path: Path) -> None:
+    files = FileStore(f"file://{tmp_path}")
+    files.note("order_1")
+    [note] = [path for path in tmp_path.rglob("order_1*") if path.is_file()]
+    (note.parent / ".swp").write_bytes(b"")
+
+    assert list(files.noted()) == ["order_1"]

@@ -118,3 +118,24 @@ def test_an_order_that_cannot_be_kept_since_the_bucket_is_away_is_refused_and_ma
     told = problem_of(away, "store-busy")
     assert (told["status"], told["try_again"], "Retry-After" in away.headers) == (503, True, True)
     assert again.status_code == 202
+
+
+def test_a_bucket_that_is_there_is_well_and_one_that_is_not_is_named(bucket: str) -> None:
+    FileStore(f"s3://{bucket}/shop").check()
+
+    with pytest.raises(StoreBusyError, match=r"^the store of files has no bucket 'never-made', or does not show it$"):
+        FileStore("s3://never-made/shop").check()
+
+
+@pytest.mark.usefixtures("nobody_listens")
+def test_a_bucket_that_is_away_is_not_well() -> None:
+    with pytest.raises(StoreBusyError, match=r"has no bucket 'discs', or does not show it$"):
+        FileStore("s3://discs/shop").check()
+
+
+def test_a_bucket_has_nothing_half_written_to_be_swept(bucket: str) -> None:
+    files = FileStore(f"s3://{bucket}/shop")
+    digest = files.put(b"a disc")
+
+    assert files.sweep_parts() == 0
+    assert files.read(digest) == b"a disc"

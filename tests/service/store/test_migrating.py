@@ -6,14 +6,18 @@ from importlib.resources import files
 from pathlib import Path
 
 import pytest
+from alembic import command
 from alembic.config import Config
 from alembic.script import ScriptDirectory
-from sqlalchemy import text
+from sqlalchemy import inspect, text
 
 from service.parts import Parts
+from service.settings import settings_from
 from service.store.faults import StoreOldError
-from service.store.migrating import NEWEST, bring_up_to_date, check_migrated, migrate
-from tests.service.conftest import environment_of, parts_of
+from service.store.migrating import NEWEST, REVISIONS, bring_up_to_date, check_migrated, migrate
+from service.store.store import Store
+from service.store.tables import Row
+from tests.service.conftest import environment_of, new_database, parts_of
 
 
 def test_the_revision_in_the_code_is_the_newest_of_the_migrations() -> None:
@@ -53,3 +57,28 @@ def test_opening_a_migrated_database_imports_no_alembic(parts: Parts, tmp_path: 
     )
 
     assert told.stdout == "False\n"
+
+
+def back_and_forth(store: Store) -> None:
+    """Migrate a database to the newest tables, back to none, and to the newest again."""
+    migrate(store)
+    with store.writing() as session:
+        config = Config()
+        config.set_main_option("script_location", str(files("service.store") / "migrations"))
+        config.attributes["connection"] = session.connection()
+        command.downgrade(config, "base")
+        left = set(inspect(session.connection()).get_table_names())
+
+    assert left == {REVISIONS}
+    assert migrate(store) == (None, NEWEST)
+    with store.reading() as session:
+        assert {*Row.metadata.tables} <= set(inspect(session.connection()).get_table_names())
+    store.close()
+
+
+def test_the_migrations_lead_back_to_no_tables_and_forth_again_on_sqlite(tmp_path: Path) -> None:
+    back_and_forth(Store(f"sqlite:///{tmp_path}/shop.sqlite"))
+
+
+def test_the_migrations_lead_back_to_no_tables_and_forth_again_on_postgresql(postgresql_url: str) -> None:
+    back_and_forth(Store(settings_from({"DATABASE_URL": new_database(postgresql_url)}).database_url))

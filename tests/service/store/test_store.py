@@ -1,19 +1,22 @@
 import sqlite3
 import threading
+from contextlib import ExitStack
 from datetime import UTC, datetime, timedelta
+from typing import Any
 
 import pytest
 from alembic.autogenerate import compare_metadata
 from alembic.runtime.migration import MigrationContext
 from hypothesis import given
 from hypothesis import strategies as st
-from sqlalchemy import select, update
+from sqlalchemy import select, text, update
+from sqlalchemy.exc import DBAPIError
 
 from service.orders.events import EVENTS
 from service.parts import Parts
 from service.store import store as store_module
 from service.store.columns import EPOCH, Moment
-from service.store.faults import StoreBusyError, StoreOldError
+from service.store.faults import StoreBusyError, StoreFullError, StoreOldError
 from service.store.ids import new_id
 from service.store.migrating import check_migrated, migrate
 from service.store.store import Store
@@ -21,6 +24,7 @@ from service.store.tables import Counter, Row
 from tests.service.conftest import sqlite_alone
 
 DIALECT = None  # of no matter to a Moment
+postgresql_alone = pytest.mark.parametrize("database_url", ["postgresql"], indirect=True)
 
 
 def counted(parts: Parts) -> int:
@@ -142,3 +146,62 @@ def test_ids_sort_by_their_moment_and_differ_within_one() -> None:
     assert ids == sorted(ids)
     assert {len(one) for one in ids} == {len("order_") + 32}
     assert new_id("order", EPOCH) != new_id("order", EPOCH)
+
+
+def test_work_that_fails_every_time_is_told_after_the_last_try(parts: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(store_module, "RETRY_AFTER_S", (0.0, 0.0))
+    tries = []
+
+    def fails(_session: object) -> None:
+        tries.append(1)
+        raise StoreBusyError("held")
+
+    with pytest.raises(StoreBusyError, match=r"^held$"):
+        parts.store.again(fails)
+
+    assert len(tries) == 3  # at once, and after each of two waits
+
+
+def test_work_that_succeeds_on_the_last_try_is_done(parts: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(store_module, "RETRY_AFTER_S", (0.0,))
+    tries = []
+
+    def fails_once(_session: object) -> str:
+        tries.append(1)
+        if len(tries) == 1:
+            raise StoreBusyError("held")
+        return "done"
+
+    assert parts.store.again(fails_once) == "done"
+
+
+def test_who_finds_all_connections_taken_is_told_to_come_again(parts: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
+    few = Store(parts.settings.database_url)
+    pool: Any = few.engine.pool
+    monkeypatch.setattr(pool, "_timeout", 0.01)
+    monkeypatch.setattr(pool, "_max_overflow", 0)
+    with ExitStack() as taken:
+        for _ in range(pool.size()):
+            taken.enter_context(few.engine.connect())
+
+        with (
+            pytest.raises(StoreBusyError, match=r"^all connections to the database are taken"),
+            few.reading() as session,
+        ):
+            session.connection()
+    few.close()
+
+
+def test_a_fault_in_the_program_s_own_words_to_the_database_is_not_told_as_the_database_s(parts: Parts) -> None:
+    with pytest.raises(DBAPIError, match="no_such_table"), parts.store.reading() as session:
+        session.execute(text("SELECT 1 FROM no_such_table"))
+
+
+@postgresql_alone
+def test_a_server_whose_disk_is_full_has_no_room(parts: Parts) -> None:
+    # ERRCODE 53100, disk_full: PostgreSQL, appendix A
+    raising = text("DO $$ BEGIN RAISE EXCEPTION 'could not extend file' USING ERRCODE = '53100'; END $$")
+
+    told = r"^there is no room left where the database is$"
+    with pytest.raises(StoreFullError, match=told), parts.store.writing() as session:
+        session.execute(raising)
