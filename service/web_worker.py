@@ -11,7 +11,6 @@ There is no TLS, no HTTP/2 and no second request on a connection here: they are 
 """
 
 import errno
-import ipaddress
 import logging
 import selectors
 import socket
@@ -20,7 +19,7 @@ import time
 from collections import Counter, deque
 from concurrent.futures import Future, ThreadPoolExecutor
 from contextlib import suppress
-from functools import lru_cache, partial
+from functools import partial
 from typing import Any, ClassVar
 
 from gunicorn import http
@@ -28,6 +27,7 @@ from gunicorn.http.errors import InvalidResponseHeader, InvalidResponseHeaderNam
 from gunicorn.workers.gthread import TConn, ThreadWorker
 
 from service.limits import Limits
+from service.web_addresses import address_of
 from service.web_gathering import Gathering, Pace, SlowBodyError, Step
 from service.web_refusals import refusal, refusal_of
 
@@ -41,7 +41,6 @@ MOST_TAKEN_AT_ONCE = 64  # connections
 LOOK_EVERY_S = 0.25  # at whose time is up
 SIGN_OF_LIFE_EVERY_S = 0.5  # s; gunicorn writes one at every turn of the loop, some thousands a second
 STOP_LINGER_S = 2.0  # s; that a process told to stop waits for the rest of a request
-IPV6_NETWORK_BITS = 64  # what one customer has at least (RFC 6177)
 ANSWER_FAULTS = (InvalidResponseHeader, InvalidResponseHeaderName)  # of the app's own answer
 FAILED = "the service failed; its log holds the trace"
 NO_MORE_FILES = (errno.EMFILE, errno.ENFILE)
@@ -101,6 +100,7 @@ class Connection(TConn):  # type: ignore[misc]
         self.data_ready = True  # gunicorn shall not wait for it once more
         self.reads_on = False
         self.is_spare = False
+        self.is_watched = False  # whether the loop looks for more of its request
         self.leaves_at_s = 0.0
         self._taker_s = limits.taker_s
 
@@ -202,8 +202,10 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
             self._let_go_of_one("")
         self._gathering[connection] = None
         self._of_address[connection.address] += 1
-        self.poller.register(connection.sock, selectors.EVENT_READ, partial(self._gather, connection))
         self._gather(connection)  # most send their request with the connection
+        if connection in self._gathering and connection not in self._waiting_to_read:
+            self.poller.register(connection.sock, selectors.EVENT_READ, partial(self._gather, connection))
+            connection.is_watched = True
         return True
 
     # Requests on their way.
@@ -226,7 +228,7 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
             case Step.ANSWER:
                 self._answer_or_refuse(connection)
             case Step.READ_ON:
-                self.poller.unregister(connection.sock)
+                self._no_longer_watched(connection)
                 self._waiting_to_read.append(connection)
                 self._let_one_read_on()
             case Step.REFUSE:
@@ -341,8 +343,12 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
             del self._of_address[connection.address]
         if connection in self._waiting_to_read:
             self._waiting_to_read.remove(connection)
-        else:
+        self._no_longer_watched(connection)
+
+    def _no_longer_watched(self, connection: Connection) -> None:
+        if connection.is_watched:
             self.poller.unregister(connection.sock)
+            connection.is_watched = False
 
     def _let_go_of_one(self, address: str) -> None:
         """Let go of the request that has been on its way longest: of an address, or of any where that is empty."""
@@ -373,25 +379,3 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
             return b""
         log.info("a request that came too slowly was let go")
         return refusal("request-too-slow", "the request was not all there in time")
-
-
-def address_of(client: Any) -> str:
-    """Whom a connection counts for: an IPv4 address, or the network of an IPv6 one; empty for a local socket.
-
-    Args:
-        client: As the socket names its other end.
-    """
-    return _subscriber_of(str(client[0])) if isinstance(client, tuple) else ""
-
-
-@lru_cache(maxsize=1024)  # most ask more than once
-def _subscriber_of(text: str) -> str:
-    try:
-        address = ipaddress.ip_address(text.partition("%")[0])
-    except ValueError:
-        return text
-    if isinstance(address, ipaddress.IPv4Address):
-        return str(address)
-    if address.ipv4_mapped is not None:
-        return str(address.ipv4_mapped)
-    return str(ipaddress.IPv6Network((int(address), IPV6_NETWORK_BITS), strict=False))

@@ -20,13 +20,13 @@ from gunicorn.config import Config
 
 from service import web_worker
 from service.api.problems import PROBLEMS
+from service.web_addresses import address_of
 from service.web_worker import (
     COME_AGAIN_S,
     LEAVE_TO_OTHERS_S,
     SIGN_OF_LIFE_EVERY_S,
     TURN_S,
     GatheringWorker,
-    address_of,
 )
 from tests.service.quick_web import LONG_BYTES, QUICK, SLOW_S
 
