@@ -140,7 +140,7 @@ def test_who_finds_no_place_to_wait_is_told_how_many_there_are_and_when_to_come_
             pytest.fail("nobody may compute here")
         assert refused.value.name == "service-busy"
         assert refused.value.headers == {"Retry-After": str(RETRY_AFTER_S)}
-        assert refused.value.detail == "3 requests compute or wait for their turn to, and no more than 3 may"
+        assert refused.value.detail == "2 requests compute or wait for their turn to, and no more than 2 may"
 
 
 def test_a_computation_that_fails_makes_room_like_any_other() -> None:
