@@ -45,10 +45,10 @@ ANSWER_FAULTS = (InvalidResponseHeader, InvalidResponseHeaderName)  # of the app
 FAILED = "the service failed; its log holds the trace"
 NO_MORE_FILES = (errno.EMFILE, errno.ENFILE)
 NOBODY_THERE = (errno.EAGAIN, errno.EWOULDBLOCK, errno.ECONNABORTED)
-# s; that a thread computes before another has its turn. By Python's own 5 ms who waits behind 16 threads that compute
-# waits 80 ms for a turn, and a request needs several, health too. It costs 4 % of a layout where eight compute at a
-# time, and nothing where two do, measured.
-TURN_S = 0.0005
+# s; that a thread computes before another has its turn. By Python's own 5 ms who waits behind a thread that computes
+# waits so long for each of the turns that a request needs, health too. It costs 4 % of a layout where eight threads want
+# turns, and nothing where two do, measured at half a millisecond.
+TURN_S = 0.0002
 LEAVE_SHARE = 0.5  # of the connections a process may have, beyond which who sent nothing is let go without a word
 TOO_MANY_UNFINISHED = "too many requests are on their way at a time"
 COME_AGAIN_S = 2  # s; in which a full process answers most of what waits
