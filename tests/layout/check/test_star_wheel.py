@@ -139,6 +139,18 @@ def test_a_row_too_far_from_the_centre_misses_its_star() -> None:
     assert finding.code is Code.OWN_STAR_MISSED
 
 
+def test_a_projection_slides_most_where_it_crosses_the_radius_square_to_the_row() -> None:
+    # Touched from the row, 5 mm off, to 9.8 mm past it: from y = 5 to -4.8. At both ends it stands nearly alike, and
+    # at 0 by 50 - sqrt(50² - 5²) = 0.2506 further out: 0.25 + 0.05 + 0.05 + 0.2506 are needed.
+    arcs = {"tracks/0/engagement_arc_mm": 9.8, "tracks/0/release_arc_mm": 9.8}
+    movement = movement_with({"gantry_offset_mm": 5, **arcs})
+
+    [finding] = own_star_is_met(disc_of(movement, [(1, 10.0)]))
+
+    assert (finding.code, finding.measured) == (Code.OWN_STAR_MISSED, 0.6)
+    assert finding.limit == pytest.approx(0.6006, abs=1e-4)
+
+
 def test_a_failing_condition_says_when_its_numbers_are_worth_less_than_its_margin() -> None:
     stated = {"value": 3.25, "plus_minus": 0.08}
 

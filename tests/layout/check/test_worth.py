@@ -118,6 +118,20 @@ def test_a_web_between_tracks_stands_on_both_radii_and_the_width() -> None:
     assert told(15.7) == []  # 7.85: it holds by 0.11
 
 
+def test_a_web_between_tracks_stands_on_the_thickness_by_the_greatest_ratio() -> None:
+    # 7.96 mm again; 15.9 times 0.5 ± 0.01 mm is 7.95 ± 0.159.
+    disc = disc_of(
+        movement_with({"disc/thickness_mm": worth(0.5, 0.01)}),
+        [(1, 10.0), (2, 10.0)],
+        cutter_ruling(web=[0.002, 0.002, 15.9]),
+    )
+
+    [finding] = features_suit_the_sheet(disc)
+
+    assert finding.code is Code.MARGIN_UNSURE
+    assert finding.message.endswith(f" It holds by 0.010 mm, less than the ±0.159 mm {STANDS_ON}")
+
+
 @pytest.mark.parametrize(("width_mm", "code"), [(0.11, Code.KERF_CLOSES), (0.13, Code.MARGIN_UNSURE)])
 def test_what_is_near_the_kerf_says_what_it_is_worth(width_mm: float, code: Code) -> None:
     hole = HOLE | {"width_mm": worth(width_mm, 0.02), "length_mm": width_mm}

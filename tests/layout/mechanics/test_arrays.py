@@ -1,12 +1,41 @@
-"""Places counted out and runs laid end to end, against doing it one by one."""
+"""Arrays frozen; places counted out and runs laid end to end, against doing it one by one."""
+
+from collections.abc import Callable
 
 import numpy as np
+import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from layout.mechanics.arrays import counted_out, end_to_end
+from layout.mechanics.arrays import (
+    FloatArray,
+    IntArray,
+    begins_run,
+    counted_out,
+    end_to_end,
+    frozen_floats,
+    frozen_ints,
+)
 
 RUNS = st.lists(st.tuples(st.integers(-50, 50), st.integers(0, 6)))
+
+
+@pytest.mark.parametrize(("freeze", "kind"), [(frozen_floats, np.float64), (frozen_ints, np.int64)])
+@pytest.mark.parametrize("values", [[1, 2], [], range(3, 5), np.array([5, 6])], ids=["some", "none", "lazy", "array"])
+def test_what_is_frozen_is_a_copy_of_its_kind_that_cannot_be_written_to(
+    freeze: Callable[..., FloatArray | IntArray], kind: type, values: object
+) -> None:
+    frozen = freeze(values)
+
+    assert frozen.dtype == kind
+    assert frozen is not values
+    with pytest.raises(ValueError, match="read-only"):
+        frozen[...] = 0
+
+
+def test_a_run_begins_wherever_a_value_differs_from_the_one_before() -> None:
+    assert begins_run(frozen_ints([5, 5, 7, 5])).tolist() == [True, False, True, True]
+    assert begins_run(frozen_ints([])).tolist() == []
 
 
 @given(runs=RUNS)

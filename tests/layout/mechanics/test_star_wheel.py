@@ -129,5 +129,10 @@ def test_the_slide_along_the_axle_counts_the_place_nearest_the_centre() -> None:
     assert axle_slide_mm(50.0, 4.0, (-1.0, 5.0)) == pytest.approx(50 - math.sqrt(2484), abs=1e-9)
 
 
+def test_a_projection_on_a_track_smaller_than_the_reach_slides_to_the_middle_of_the_disc_at_most() -> None:
+    # y = 3 is off a circle of 2 mm; from 2 mm out it slides to 0.
+    assert axle_slide_mm(2.0, 0.0, (-1.0, 3.0)) == 2.0
+
+
 def test_the_plain_movement_uses_a_six_point_wheel() -> None:
     assert isinstance(movement_with().star_wheel, StarWheel)
