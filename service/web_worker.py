@@ -48,7 +48,7 @@ NOBODY_THERE = (errno.EAGAIN, errno.EWOULDBLOCK, errno.ECONNABORTED)
 # s; that a thread computes before another has its turn. By Python's own 5 ms who waits behind a thread that computes
 # waits so long for each of the turns that a request needs, health too. At half a millisecond it costs 4 % of a layout
 # where eight threads want turns, and nothing where two do, measured.
-TURN_S = 0.0002
+TURN_S = 0.00025
 LEAVE_SHARE = 0.5  # of the connections a process may have, beyond which who sent nothing is let go without a word
 TOO_MANY_UNFINISHED = "too many requests are on their way at a time"
 COME_AGAIN_S = 2  # s; in which a full process answers most of what waits

@@ -1,7 +1,5 @@
 """The picture of a disc: what is cut, how it looks after forming, and what was found."""
 
-from xml.etree.ElementTree import tostring
-
 from layout.cut.plan import CutPlan
 from layout.write.laid_out import NOT_GOOD, LaidOut
 from layout.write.svg_disc import disc_area, layer_groups, working_edges
@@ -56,7 +54,7 @@ def write_svg(plan: CutPlan, laid_out: LaidOut) -> bytes:
     ):
         drawing.add(group)
     describe(drawing, *_described(plan, laid_out))
-    return b"".join([_HEAD, tostring(drawing.get_xml(), encoding="utf-8"), b"\n"])
+    return b"".join([_HEAD, drawing.tostring().encode(), b"\n"])
 
 
 def _described(plan: CutPlan, laid_out: LaidOut) -> tuple[str, str]:

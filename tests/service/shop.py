@@ -88,11 +88,18 @@ class RememberingWalk:
         self._files: dict[tuple[str, str | None], dict[str, bytes]] = {}
 
     def lay_out_discs(
-        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, clock: Clock | None = None
+        self,
+        tune: bytes,
+        movement: Movement,
+        cutter: Cutter,
+        settings: Settings,
+        clock: Clock | None = None,
+        *,
+        most_s: float | None = None,
     ) -> tuple[LaidOut, ...]:
         asked = (walk.fingerprint_of(tune, movement, cutter, settings), settings.discs)
         if asked not in self._layouts:
-            self._layouts[asked] = walk.lay_out_discs(tune, movement, cutter, settings, clock)
+            self._layouts[asked] = walk.lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
         return self._layouts[asked]
 
     def files_of(self, laid_out: LaidOut, *, not_good: str | None = None) -> dict[str, bytes]:

@@ -368,12 +368,12 @@ def test_a_second_signal_hurries_a_worker_that_stops() -> None:
     assert ended.stdout == "(False, True)\n"
 
 
-def test_what_the_sweep_found_and_gave_out_is_looked_for_again_after_a_second_and_not_sooner(
+def test_what_the_sweep_found_and_gave_out_is_looked_for_again_after_a_pause_and_not_sooner(
     shop: Parts, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
     placed = {place(shop, tune_called(f"Tune {number}")) for number in range(OFFERS_OF_A_SLOT + 1)}
-    now_s = [100.0]
+    now_s = [0.0]
     monkeypatch.setattr(sweeping.time, "monotonic", lambda: now_s[0])
     sweep = Sweep(shop.store, 1)
 
