@@ -31,7 +31,6 @@ from service.api.order_files import order_file_routes
 from service.api.orders import order_routes
 from service.api.problem_pages import problem_pages
 from service.api.proofs import proof_routes
-from service.api.queued_planner import QueuedPlanner
 from service.api.quotes import quote_routes
 from service.api.readiness import readiness_routes
 from service.api.request_ids import name_requests
@@ -91,8 +90,8 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     meter(app, counted)
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    planner = QueuedPlanner(planner or TheWalk(), open_computing_queue(app, None))
-    desk = LayoutDesk(planner, LayoutCache(settings), settings.limits)
+    planner = planner or TheWalk()
+    desk = LayoutDesk(planner, LayoutCache(settings), open_computing_queue(app, None), settings.limits)
     shelf = HearingShelf(settings)
     for routes in (*_routes_of_layouts(planner, desk, parts, shelf), *_routes_of_orders(parts, queue, shelf)):
         app.register_blueprint(routes)

@@ -104,6 +104,7 @@ class WrittenEntities(EntitySection):
         self._handles = document.entitydb.handles
         self._owner = document.modelspace().layout_key
         self._text: list[str] = []
+        self._is_written = False
 
     def add_polylines(
         self, layer: str, points_mm: FloatArray, bulges: FloatArray, *, closed: bool, words: str = ""
@@ -130,11 +131,18 @@ class WrittenEntities(EntitySection):
         self._add("POINT", "AcDbPoint", layer, " 10\n%s\n 20\n%s\n 30\n0.0\n", points_mm)
 
     def export_dxf(self, tagwriter: AbstractTagWriter) -> None:
-        """Write the section: ezdxf asks for it in its turn, once."""
+        """Write the section: ezdxf asks for it in its turn.
+
+        Raises:
+            RuntimeError: It was written already, and is no longer there: a fault of the program, never of an input.
+        """
+        if self._is_written:
+            raise RuntimeError("the entities of a document are written once")
         tagwriter.write_str("  0\nSECTION\n  2\nENTITIES\n")
         for text in self._text:
             tagwriter.write_str(text)
         tagwriter.write_str("  0\nENDSEC\n")
+        self._is_written = True
         self._text.clear()  # a document refers to itself: it may stay in memory long after it is thrown away
 
     def _add(self, kind: str, subclass: str, layer: str, shape: str, numbers: FloatArray) -> None:

@@ -29,7 +29,10 @@ def json_bytes(value: Any) -> bytes:
 
 
 def json_bytes_of_read(value: Any) -> bytes:
-    """The same bytes in a twentieth of the time, of a value that was read from JSON: all its numbers are finite."""
+    """The same bytes in a twentieth of the time, of what was read from JSON that holds no NaN and no Infinity.
+
+    Ours holds none: `layout.write.json_lines` refuses them.
+    """
     try:
         written = orjson.dumps(value, option=orjson.OPT_INDENT_2 | orjson.OPT_APPEND_NEWLINE)
     except TypeError:  # half a surrogate pair, or a whole number of more than 64 bits
@@ -58,7 +61,25 @@ def document_response(value: Any, request: Request) -> Response:
     """An answer in JSON with an entity tag of its bytes, or 304 where the client has them already."""
     response = json_response(value)
     response.set_etag(hashlib.sha256(response.get_data()).hexdigest()[:32])
-    response.make_conditional(request)
+    return conditional(response, request)
+
+
+def matches(tag: str, request: Request) -> bool:
+    """Whether If-Match lets an answer with this entity tag be given: any tag, or this one (RFC 9110 section 13.1.1)."""
+    wanted = request.if_match
+    return "If-Match" not in request.headers or wanted.star_tag or wanted.is_strong(tag)
+
+
+def conditional(response: Response, request: Request) -> Response:
+    """An answer with an entity tag as the request's conditions have it: whole, in part, 304 or 412.
+
+    If-Match that holds is out of the way of the others (RFC 9110 section 13.2.2); the library would answer whole where
+    it holds, whatever If-None-Match says, and knows no asterisk in it.
+    """
+    environ = dict(request.environ)
+    if matches(response.get_etag()[0] or "", request):
+        environ.pop("HTTP_IF_MATCH", None)
+    response.make_conditional(environ)
     return response
 
 

@@ -13,7 +13,7 @@ from layout.documents import read_cutter, read_movement
 from layout.errors import DocumentError, NotShippedError
 from service.access.asker import Asker
 from service.access.scopes import Scope
-from service.api.answers import document_response, json_bytes, json_response
+from service.api.answers import conditional, document_response, json_bytes, json_response
 from service.api.asking import asker_or_none, needs, open_and_more_with
 from service.api.bodies import body_of
 from service.api.describing import describes
@@ -134,8 +134,7 @@ class _Shelf:
         else:
             response = json_response(_resolved(document))
         response.set_etag(tag_of(document))
-        response.make_conditional(asked)
-        return response
+        return conditional(response, asked)
 
     def revisions(self, asker: Asker | None, document_id: str) -> Response:
         with self._store.reading() as session:

@@ -15,6 +15,7 @@ from dataclasses import replace
 from itertools import accumulate, chain, islice
 
 from layout.file_names import files_given
+from service.api.computing_queue import ComputingQueue
 from service.api.layout_cache import KeptLayout, LayoutCache
 from service.api.problems import ProblemError
 from service.documents import Inputs
@@ -35,6 +36,7 @@ class LayoutDesk:
         self,
         planner: AnyPlanner,
         cache: LayoutCache,
+        queue: ComputingQueue,
         limits: Limits | None = None,
         clock: Callable[[], float] = time.monotonic,
     ) -> None:
@@ -43,10 +45,12 @@ class LayoutDesk:
         Args:
             planner: Computes layouts.
             cache: Keeps them.
+            queue: Where who computes waits for a turn.
             limits: Read for the longest search.
             clock: Seconds, only ever forward.
         """
         self._planner = planner
+        self._queue = queue
         self._most_s = (limits or Limits()).search_s
         self._clock = clock
         self._cache = cache
@@ -83,8 +87,9 @@ class LayoutDesk:
         kept = tuple(layout for layout in found if layout is not None and layout.inputs == inputs)
         if len(kept) == len(fingerprints):
             return kept
-        computed = self._compute(inputs)
-        kept = tuple(self._kept(laid_out, inputs, owner_id) for laid_out in computed)
+        with self._queue.place():
+            computed = self._compute(inputs)
+            kept = tuple(self._kept(laid_out, inputs, owner_id) for laid_out in computed)
         if self._cut_short(inputs, computed):
             log.info("stopped after %d s and not kept: %s", self._most_s, kept[0].fingerprint)
             return kept
@@ -132,7 +137,7 @@ class LayoutDesk:
         kept, is_current = self.find_any(fingerprint, owner_id)
         if kept is None or is_current:
             return kept
-        with self._lock_of(kept):
+        with self._queue.place(), self._lock_of(kept):
             discs = self.lay_out_discs(kept.inputs, kept.owner_id)
         again = discs[kept.disc_number - 1]
         is_stopped = any(disc.stopped_by_time for disc in discs)
@@ -142,7 +147,7 @@ class LayoutDesk:
 
     def _same_again(self, kept: KeptLayout) -> KeptLayout:
         """What an earlier version kept, made by this one and kept from now on, if it is the same disc."""
-        with self._lock_of(kept):
+        with self._queue.place(), self._lock_of(kept):
             made = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made it
             if made is not None:
                 return made
@@ -205,7 +210,8 @@ class LayoutDesk:
         """
         if reason is None or kept.good_to_cut:
             return kept.files
-        return self._planner.told_of(self._laid_out(kept), not_good=reason)
+        with self._queue.place():
+            return self._planner.told_of(self._laid_out(kept), not_good=reason)
 
     def files(self, kept: KeptLayout, reason: str | None) -> Mapping[str, bytes]:
         """All files that are given, made where they are not kept.
@@ -218,14 +224,15 @@ class LayoutDesk:
             OSError: The folder was taken away.
         """
         if reason is not None and not kept.good_to_cut:
-            return self._planner.files_of(self._laid_out(kept), not_good=reason)
+            with self._queue.place():
+                return self._files_of(self._laid_out(kept), reason)
         if kept.has_all_files:
             return kept.files
-        with self._lock_of(kept):
+        with self._queue.place(), self._lock_of(kept):
             other = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made them
             if other is not None and other.has_all_files and other.inputs == kept.inputs:
                 return other.files
-            files = self._planner.files_of(self._laid_out(kept))
+            files = self._files_of(self._laid_out(kept))
             self._cache.put(replace(kept, files=files))
             return files
 
@@ -259,16 +266,22 @@ class LayoutDesk:
             disc_count=laid_out.disc_count,
             good_to_cut=laid_out.good_to_cut,
             inputs=inputs,
-            files=self._planner.files_of(laid_out) if may_differ else self._planner.told_of(laid_out),
+            files=self._files_of(laid_out) if may_differ else self._planner.told_of(laid_out),
             owner_id=owner_id,
         )
+
+    def _files_of(self, laid_out: Layout, reason: str | None = None) -> Mapping[str, bytes]:
+        with self._queue.admitted():
+            files: Mapping[str, bytes] = self._planner.files_of(laid_out, not_good=reason)
+        return files
 
     def _compute(self, inputs: Inputs) -> tuple[Layout, ...]:
         read = inputs.read()
         documents = (read.movement, read.cutter, read.settings)
-        computed: tuple[Layout, ...] = self._planner.lay_out_discs(
-            inputs.tune, *documents, self._clock, most_s=self._most_s
-        )
+        with self._queue.admitted():  # waiting takes nothing of the time of the search
+            computed: tuple[Layout, ...] = self._planner.lay_out_discs(
+                inputs.tune, *documents, self._clock, most_s=self._most_s
+            )
         before = self._at_hand
         counts = accumulate(len(discs) for discs in (computed, *before))
         fitting = [

@@ -90,8 +90,11 @@ class HearingShelf:
         key = self._key(layout_json, movement, query)
         found = self._found(key)
         if found is None:
-            with self._making:
-                found = self._found(key) or self._made(key, layout_json, movement, query)
+            with computing_queue().place(), self._making:
+                found = self._found(key)
+                if found is None:
+                    with computing_queue().admitted():
+                        found = self._made(key, layout_json, movement, query)
         return found
 
     def chunks(self, digest: str, *, start: int = 0, end: int | None = None) -> Iterator[bytes]:
@@ -149,7 +152,7 @@ class HearingShelf:
         self._folder.mkdir(mode=OWNER_ONLY, parents=True, exist_ok=True)
         handle, part = tempfile.mkstemp(dir=self._folder, suffix=PART_SUFFIX)
         try:
-            with os.fdopen(handle, "wb") as file, computing_queue().admitted():
+            with os.fdopen(handle, "wb") as file:
                 hashing = _Hashing(file)
                 write_hearing(hearing, hashing, bits)
             kept = self._folder / f"{key}-{hashing.digest.hexdigest()}{SUFFIX}"

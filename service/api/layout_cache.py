@@ -17,6 +17,7 @@ import stat
 import tempfile
 import time
 import zipfile
+import zlib
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from functools import lru_cache
@@ -33,6 +34,8 @@ from service.store.files import NO_ROOM
 log = logging.getLogger("discwright")
 
 SUFFIX = ".zip"
+# What a damaged archive raises; RuntimeError where it seems to be encrypted, or of another version.
+DAMAGED = (zipfile.BadZipFile, zlib.error, EOFError, RuntimeError, KeyError, ValueError)
 PACKED_LEVEL = 1  # of 9: as quick as it gets; 13 % larger than by 6, which takes four times as long
 PART_SUFFIX = ".part"
 OWNER_ONLY = 0o700
@@ -129,7 +132,7 @@ class LayoutCache:
                     state, layout = _state_of(os.fstat(file.fileno())), _unpacked(file.read())
         except FileNotFoundError:
             return None
-        except (zipfile.BadZipFile, KeyError, ValueError) as fault:
+        except DAMAGED as fault:
             log.warning("%s is damaged and removed: %s", path, fault)
             path.unlink(missing_ok=True)
             return None

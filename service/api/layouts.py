@@ -13,7 +13,7 @@ from flask import Blueprint, Request, Response, request
 from layout.documents import Settings
 from layout.file_names import CUTTING_FILES, FILES, HEARING_FILES, TOLD_FILES, files_for
 from service.access.scopes import Scope
-from service.api.answers import ONLY_OWN_STYLES, json_bytes_of_read, json_bytes_response
+from service.api.answers import ONLY_OWN_STYLES, conditional, json_bytes_of_read, json_bytes_response, matches
 from service.api.archive import ZIP_MEDIA_TYPE, archive_of
 from service.api.asking import asker_or_none, open_on_loopback
 from service.api.describing import describes
@@ -261,17 +261,15 @@ class LayoutTeller:
 def _has_already(tag: str) -> bool:
     """Whether the client says that it has what it reads: it is answered 304 then, with a head alone.
 
-    A tune that is posted is answered whole, whatever the client has. Who asks by If-Match too is left to the library.
+    A tune that is posted is answered whole, whatever the client has.
     """
-    is_read = request.method in SAFE_METHODS and "If-Match" not in request.headers
-    return is_read and request.if_none_match.contains(tag)
+    is_read = request.method in SAFE_METHODS and matches(tag, request)
+    return is_read and request.if_none_match.contains_weak(tag)
 
 
 def _conditional(response: Response, asked: Request) -> Response:
     """What is read, as its conditions have it: 304 where it is known already that the client has it."""
-    if response.status_code != NOT_MODIFIED:
-        response.make_conditional(asked)
-    return response
+    return response if response.status_code == NOT_MODIFIED else conditional(response, asked)
 
 
 def _brought(kept: KeptLayout, file: tuple[str, bytes, str], asked: Request) -> Response:
@@ -282,8 +280,7 @@ def _brought(kept: KeptLayout, file: tuple[str, bytes, str], asked: Request) -> 
     response.headers["Content-Disposition"] = content_disposition(named, name, how="attachment")
     response.headers["Cache-Control"] = "private, no-cache"
     response.add_etag()
-    response.make_conditional(asked)
-    return response
+    return conditional(response, asked)
 
 
 def _heard(kept: KeptLayout) -> Heard:

@@ -9,7 +9,7 @@ from flask import Blueprint, Request, Response, request
 
 from service.access.asker import Asker
 from service.access.scopes import Scope
-from service.api.answers import json_response
+from service.api.answers import conditional, json_response
 from service.api.asking import needs
 from service.api.cursors import Cursors
 from service.api.describing import describes
@@ -73,8 +73,7 @@ def order_routes(parts: Parts, send: Send, shelf: HearingShelf) -> Blueprint:
         response.set_etag(order_tag(order))
         if waited is not None:
             response.headers["Preference-Applied"] = f"wait={waited}"  # RFC 7240
-        response.make_conditional(request)
-        return response
+        return conditional(response, request)
 
     @routes.delete("/<order_id>")
     @describes(orders.ERASE)

@@ -8,6 +8,7 @@ from service.access.asker import Asker
 from service.access.scopes import Scope
 from service.api.answers import json_bytes, json_response
 from service.api.asking import needs
+from service.api.computing_queue import computing_queue
 from service.api.describing import describes
 from service.api.once import once
 from service.api.operations import quotes
@@ -15,7 +16,7 @@ from service.api.order_forms import asked_order, brought_by, order_body, refused
 from service.media_types import JSON_MEDIA_TYPE
 from service.moments import moment_text
 from service.orders.kept_answers import Given
-from service.orders.quoting import QuoteView, find_quote, quote_order
+from service.orders.quoting import AlsoQuote, QuoteView, find_quote, quote_order
 from service.parts import Parts
 from service.planner import AnyPlanner
 
@@ -65,14 +66,12 @@ def _quoted(planner: AnyPlanner, parts: Parts, asker: Asker, asked: Request) -> 
             raise refused(f"/{name}", f"a quote is for a tune sent along; leave {name} out")
     order = asked_order(body, brought)
     days = parts.settings.work.quote_days
-    return once(
-        parts,
-        asked,
-        asker,
-        brought,
-        lambda also: quote_order(parts.store, planner, asker, order, also, days=days),
-        _given,
-    )
+
+    def work(also: AlsoQuote) -> QuoteView:
+        with computing_queue().admitted():
+            return quote_order(parts.store, planner, asker, order, also, days=days)
+
+    return once(parts, asked, asker, brought, work, _given)
 
 
 def _given(quote: QuoteView) -> Given:

@@ -5,7 +5,7 @@ from typing import Any
 
 from flask import Blueprint, Response, request
 
-from service.api.answers import document_response
+from service.api.answers import conditional, document_response
 from service.api.asking import open_to_all
 from service.api.describing import describes
 from service.api.operations import test_tunes
@@ -34,8 +34,7 @@ def test_tune_routes(limits: Limits) -> Blueprint:
         response.headers["Content-Disposition"] = f'attachment; filename="{tune.name}.mid"'
         response.headers["Cache-Control"] = f"public, max-age={limits.file_max_age_s}"
         response.set_etag(_digest(tune))
-        response.make_conditional(request)
-        return response
+        return conditional(response, request)
 
     return routes
 

@@ -91,8 +91,10 @@ class Slot:
         found = shared.sweep.next_found()
         if found is not None:
             return found
-        # Where more orders wait that have no message, nobody waits for a message; one that is there has its turn.
-        wait_s = 0.0 if shared.sweep.may_find_more else RECEIVE_S
+        # Where more orders wait that have no message, a message is waited for no longer than to the next look; one that
+        # is there has its turn.
+        left_s = shared.sweep.looks_again_in_s
+        wait_s = RECEIVE_S if left_s is None else min(left_s, RECEIVE_S)
         try:
             received = shared.queue.receive(wait_s)
         except QueueAwayError:

@@ -43,15 +43,20 @@ class Sweep:
             self._look()
 
     @property
-    def may_find_more(self) -> bool:
-        """Whether the last look found as much as it may, and all of it is taken: a queue that was lost."""
-        return self._is_full and not self._found and time.monotonic() - self._swept_at_s >= LEAST_S
+    def looks_again_in_s(self) -> float | None:
+        """Seconds to the next look where the last found as much as it may, and all of that is taken; else None.
+
+        So it is after a queue was lost, until all its orders are found.
+        """
+        if not self._is_full or self._found:
+            return None
+        return max(0.0, LEAST_S - (time.monotonic() - self._swept_at_s))
 
     def sweep_on(self) -> None:
-        """Look again where more may be found; who comes while another slot looks has what that one finds."""
-        if self.may_find_more:
+        """Look again where it is time to; who comes while another slot looks has what that one finds."""
+        if self.looks_again_in_s == 0:
             with self._sweeping:
-                if self.may_find_more:
+                if self.looks_again_in_s == 0:
                     self._look()
 
     def next_found(self) -> str | None:

@@ -3,6 +3,7 @@
 import contextlib
 import fcntl
 import os
+import re
 import shutil
 import tempfile
 from collections.abc import Mapping, Sequence
@@ -11,7 +12,8 @@ from pathlib import Path
 
 from service.commands.errors import CommandError
 
-INSIDE = ".discwright-"  # begins the name of a folder in which files are written before they are moved out
+INSIDE = ".discwright-half-written-"  # begins the name of a folder in which files are written before they are moved out
+_IS_INSIDE = re.compile(rf"{re.escape(INSIDE)}[a-z0-9_]{{8}}")  # with what `mkdtemp` adds to it
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -55,7 +57,6 @@ def write_folders(
             made += _make(folder) if files else []
         for folder, files in folders.items():
             if files:
-                _clear_abandoned(folder)
                 ready[folder] = _written_inside(folder, files)
         stale = {folder: _without(folder, cutting) for folder in folders}
         for last in (False, True):
@@ -79,23 +80,43 @@ def _check_free(folder: Path, names: set[str]) -> None:
 
 def _written_inside(folder: Path, files: Mapping[str, bytes]) -> _Inside:
     """The files in a new folder inside this one; gone again where it cannot be."""
-    path = Path(tempfile.mkdtemp(prefix=INSIDE, dir=folder))
-    inside = _Inside(path=path, lock=os.open(path, os.O_RDONLY))
+    inside = _new_inside(folder)
     try:
-        with contextlib.suppress(OSError):  # a disk that knows no locks
-            fcntl.flock(inside.lock, fcntl.LOCK_EX | fcntl.LOCK_NB)
         for name, content in files.items():
-            (path / name).write_bytes(content)
+            (inside.path / name).write_bytes(content)
     except BaseException:
         inside.remove()
         raise
     return inside
 
 
+def _new_inside(folder: Path) -> _Inside:
+    """A new folder inside this one, held; what was left there before is cleared away.
+
+    One at a time, by a lock on the folder round it: a new folder that is not held yet is not taken for a left one.
+    """
+    outer = os.open(folder, os.O_RDONLY)
+    try:
+        with contextlib.suppress(OSError):  # a disk that knows no locks, where nothing is cleared away either
+            fcntl.flock(outer, fcntl.LOCK_EX)
+        _clear_abandoned(folder)
+        path = Path(tempfile.mkdtemp(prefix=INSIDE, dir=folder))
+        try:
+            lock = os.open(path, os.O_RDONLY)
+        except OSError:
+            path.rmdir()
+            raise
+        with contextlib.suppress(OSError):
+            fcntl.flock(lock, fcntl.LOCK_EX | fcntl.LOCK_NB)
+        return _Inside(path=path, lock=lock)
+    finally:
+        os.close(outer)
+
+
 def _clear_abandoned(folder: Path) -> None:
-    """Remove what runs that were killed left inside a folder: what no process holds the lock of."""
-    for path in folder.glob(f"{INSIDE}*"):
-        with contextlib.suppress(OSError):  # held, or gone by now
+    """Remove what runs that were killed left inside a folder: of our own names, what no process holds the lock of."""
+    for path in [path for path in folder.iterdir() if _IS_INSIDE.fullmatch(path.name)]:
+        with contextlib.suppress(OSError):  # held, no folder, or gone by now
             lock = os.open(path, os.O_RDONLY)
             try:
                 fcntl.flock(lock, fcntl.LOCK_EX | fcntl.LOCK_NB)

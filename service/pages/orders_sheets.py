@@ -12,6 +12,7 @@ import pypdfium2  # type: ignore[import-untyped]  # it ships no types
 from flask import Request, Response
 from PIL import Image
 
+from service.api.answers import conditional
 from service.api.order_answers import file_address
 from service.api.problems import ProblemError
 from service.orders.views import FileView, PlanView
@@ -82,10 +83,9 @@ def sheet_picture(parts: Parts, file: FileView, number: int, asked: Request) -> 
     response = Response(content_type=PNG_MEDIA_TYPE)
     response.set_etag(f"{file.sha256}-{number}-{PIXELS_PER_POINT}")
     response.headers["Cache-Control"] = "private, no-cache"
-    if not asked.if_none_match.contains(response.get_etag()[0] or ""):
+    if not asked.if_none_match.contains_weak(response.get_etag()[0] or ""):
         response.set_data(picture_of(parts.files.read(file.sha256), number))
-    response.make_conditional(asked)
-    return response
+    return conditional(response, asked)
 
 
 def picture_of(pdf: bytes, number: int) -> bytes:

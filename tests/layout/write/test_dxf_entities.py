@@ -87,3 +87,13 @@ def test_no_handle_is_given_twice_and_the_next_one_is_free() -> None:
 @pytest.mark.parametrize(("release", "kind"), [("R12", LibraryEntities), ("R2010", WrittenEntities)])
 def test_a_release_without_light_polylines_is_left_to_ezdxf(release: str, kind: type) -> None:
     assert isinstance(entities_of(new_document(EXTENTS_MM, release)), kind)
+
+
+def test_a_document_whose_entities_went_with_its_file_is_not_written_without_them() -> None:
+    document = new_document(EXTENTS_MM)
+    entities = WrittenEntities(document)
+    entities.add_circles("0", np.zeros((1, 2)), [1.0])
+    bytes_of(document, ())
+
+    with pytest.raises(RuntimeError, match="written once"):
+        bytes_of(document, ())

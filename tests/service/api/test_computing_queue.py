@@ -143,6 +143,37 @@ def test_who_finds_no_place_to_wait_is_told_how_many_there_are_and_when_to_come_
         assert refused.value.detail == "2 requests compute or wait for their turn to, and no more than 2 may"
 
 
+def test_who_holds_a_place_is_not_refused_when_all_others_are_taken_meanwhile() -> None:
+    with shop() as open_shop:
+        open_shop.queue.places = 2
+        with open_shop.queue.place():
+            other = open_shop.comes()
+            assert other.has_begun.wait(WAIT_S)
+            other._may_end.set()
+            with open_shop.queue.admitted():
+                assert open_shop.queue._taken_count >= 1
+
+
+def test_who_holds_a_place_counts_though_nothing_is_computed_and_gives_it_back() -> None:
+    queue = ComputingQueue()
+    queue.places = 1
+    refused = []
+
+    def comes() -> None:
+        try:
+            with queue.admitted():
+                refused.append(False)
+        except ProblemError:
+            refused.append(True)
+
+    with ThreadPoolExecutor(max_workers=1) as pool:
+        with queue.place():
+            pool.submit(comes).result(WAIT_S)
+        pool.submit(comes).result(WAIT_S)
+
+    assert refused == [True, False]
+
+
 def test_a_computation_that_fails_makes_room_like_any_other() -> None:
     queue = ComputingQueue()
     queue.places = 1

@@ -105,6 +105,22 @@ def test_a_damaged_file_is_removed_and_counts_as_not_kept(tmp_path: Path) -> Non
     assert not path.exists()
 
 
+def test_a_file_of_which_any_one_byte_is_damaged_is_no_failure(tmp_path: Path) -> None:
+    cache = LayoutCache(settings(tmp_path))
+    cache.put(layout(1))
+    path = cache._path(layout(1).fingerprint)
+    whole = path.read_bytes()
+
+    gone = 0
+    for place in range(len(whole)):
+        path.write_bytes(whole[:place] + bytes([whole[place] ^ 0xFF]) + whole[place + 1 :])
+        kept = LayoutCache(settings(tmp_path)).get(layout(1).fingerprint)
+        gone += kept is None
+        assert kept is not None or not path.exists()
+
+    assert gone > len(whole) / 4  # what tells nothing, such as a moment or a permission, may be damaged
+
+
 def test_a_file_half_written_by_a_stopped_worker_goes_after_a_while(tmp_path: Path) -> None:
     cache = LayoutCache(settings(tmp_path))
     old, fresh = tmp_path / "layouts" / "a.part", tmp_path / "layouts" / "b.part"

@@ -15,6 +15,7 @@ from werkzeug.test import TestResponse
 
 from layout.documents import shipped_text
 from service.access.scopes import Scope
+from service.api.computing_queue import open_computing_queue
 from service.app import OPENED, create_app
 from service.orders.quoting import forget_quotes
 from service.parts import Parts
@@ -112,6 +113,15 @@ def test_the_price_of_a_real_disc_can_be_worked_again_by_hand(any_parts: Parts) 
     by_hand = amounts["setup"] + 3 * (amounts["machine time"] + amounts["pierces"])
     assert (Decimal(told["price"]["amount"]), told["price"]["currency"]) == (by_hand, "EUR")
     assert by_hand > Decimal("12.50")
+
+
+def test_a_quote_waits_for_its_turn_to_be_worked_out_and_is_refused_where_no_place_is_left(shop: Shop) -> None:
+    open_computing_queue(shop.http.application, 0)
+
+    problem_of(shop.post("quotes", ORDER), "service-busy")
+
+    open_computing_queue(shop.http.application, 1)
+    assert shop.post("quotes", ORDER).status_code == 201
 
 
 @pytest.mark.parametrize(

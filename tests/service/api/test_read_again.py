@@ -32,6 +32,9 @@ CONDITIONS = {
     "both the tag": {"If-None-Match": "TAG", "If-Match": "TAG"},
     "matching another": {"If-None-Match": "TAG", "If-Match": '"other"'},
     "matching the tag alone": {"If-Match": "TAG"},
+    "matching the tag weakly": {"If-Match": "W/TAG"},
+    "matching any": {"If-Match": "*"},
+    "matching any, and the tag": {"If-None-Match": "TAG", "If-Match": "*"},
 }
 
 
@@ -60,8 +63,10 @@ def test_a_condition_is_answered_as_the_library_answers_it(
 
     assert soon == plain
     for (method, condition), (status, content, _) in soon.items():
-        is_whole = condition in ("none", "another", "both the tag", "matching the tag alone")
-        assert status == (200 if is_whole else 412 if condition == "matching another" else 304), condition
+        # RFC 9110 section 13.2.2: If-Match first, where it does not hold 412; then If-None-Match.
+        is_whole = condition in ("none", "another", "matching the tag alone", "matching any")
+        is_refused = condition in ("matching another", "matching the tag weakly")
+        assert status == (200 if is_whole else 412 if is_refused else 304), condition
         assert bool(content) == (status != 304 and method == "GET"), condition
 
 

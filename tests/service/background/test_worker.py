@@ -395,6 +395,28 @@ def test_what_the_sweep_found_and_gave_out_is_looked_for_again_after_a_pause_and
     assert sweep.next_found() is None  # the last look found fewer than it may: what comes now has a message
 
 
+def test_where_others_took_what_a_full_look_found_no_message_is_waited_for_longer_than_to_the_next_look(
+    shop: Parts, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(taking, "WAITS_TOO_LONG_S", 0)
+    for number in range(OFFERS_OF_A_SLOT):
+        place(shop, tune_called(f"Tune {number}"))
+    now_s = [0.0]
+    monkeypatch.setattr(sweeping.time, "monotonic", lambda: now_s[0])
+    sweep = Sweep(shop.store, 1)
+
+    before = sweep.looks_again_in_s
+    sweep.sweep()
+    found = sweep.looks_again_in_s
+    while sweep.next_found() is not None:
+        now_s[0] += LEAST_S / 16  # eight that others have taken: half of the time
+
+    assert (before, found) == (None, None)
+    assert sweep.looks_again_in_s == pytest.approx(LEAST_S / 2)
+    now_s[0] += LEAST_S
+    assert sweep.looks_again_in_s == 0
+
+
 def test_an_order_that_is_lost_is_not_renewed_and_others_are(shop: Parts, monkeypatch: pytest.MonkeyPatch) -> None:
     renewed: list[str] = []
     monkeypatch.setattr(holding, "renew", lambda _store, held, _lease_s: renewed.append(held.order_id) is None)

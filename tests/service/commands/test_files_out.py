@@ -4,9 +4,11 @@ import errno
 import fcntl
 import os
 from pathlib import Path
+from typing import Any
 
 import pytest
 
+from service.commands import files_out
 from service.commands.errors import CommandError
 from service.commands.files_out import write_folders
 
@@ -76,7 +78,7 @@ def test_a_null_character_in_a_path_is_told() -> None:
 
 def half_written(folder: Path) -> Path:
     """What one that was killed leaves."""
-    left = folder / ".discwright-abc"
+    left = folder / ".discwright-half-written-a_c45678"
     left.mkdir()
     (left / "cut.dxf").write_bytes(b"half")
     return left
@@ -88,6 +90,53 @@ def test_what_one_that_was_killed_left_half_written_goes_when_its_folder_is_writ
     write_folders({tmp_path: FILES}, cutting=CUTTING)
 
     assert {path.name: path.read_bytes() for path in tmp_path.iterdir()} == FILES
+
+
+@pytest.mark.parametrize(
+    "name", [".discwright-notes", ".discwright-half-written-", ".discwright-half-written-of-mine", "half-written"]
+)
+def test_a_folder_that_another_made_is_left_alone_however_near_its_name_is(tmp_path: Path, name: str) -> None:
+    (tmp_path / name).mkdir()
+    (tmp_path / name / "mine.txt").write_bytes(b"mine")
+
+    write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert (tmp_path / name / "mine.txt").read_bytes() == b"mine"
+
+
+def test_a_link_by_the_name_of_a_left_folder_is_not_followed(tmp_path: Path) -> None:
+    elsewhere, out = tmp_path / "elsewhere", tmp_path / "out"
+    elsewhere.mkdir()
+    out.mkdir()
+    (elsewhere / "mine.txt").write_bytes(b"mine")
+    (out / ".discwright-half-written-a_c45678").symlink_to(elsewhere)
+
+    write_folders({out: FILES}, cutting=CUTTING)
+
+    assert (elsewhere / "mine.txt").read_bytes() == b"mine"
+
+
+def test_a_new_folder_is_not_taken_for_a_left_one_before_it_is_held(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    is_alone: list[bool] = []
+    mkdtemp = files_out.tempfile.mkdtemp
+
+    def look(**asked: Any) -> str:
+        outer = os.open(tmp_path, os.O_RDONLY)
+        try:
+            fcntl.flock(outer, fcntl.LOCK_EX | fcntl.LOCK_NB)
+            is_alone.append(False)
+        except BlockingIOError:
+            is_alone.append(True)
+        finally:
+            os.close(outer)
+        return str(mkdtemp(**asked))
+
+    monkeypatch.setattr(files_out.tempfile, "mkdtemp", look)
+    write_folders({tmp_path: FILES}, cutting=CUTTING)
+
+    assert is_alone == [True]
 
 
 def test_what_another_is_writing_at_this_moment_is_left_alone(tmp_path: Path) -> None:
