@@ -16,7 +16,8 @@ PARTS_OF_THE_TURN = (0.05, 0.3, 0.55, 0.8, 0.95)
 LISTEN_MS = 1200  # at each place
 # At each frame: what the page draws, and what the sound says at the same moment. The sound's own time comes in steps of
 # its buffers; of each step the first frame that sees it is kept, where it is least stale. It is as stale as this frame
-# comes after the one before: where a busy machine keeps the browser waiting, a frame tells nothing.
+# comes after the one before, and as this comes after the page's own look in it: where a busy machine keeps the browser
+# waiting for either, a frame tells nothing.
 LISTEN = """(during_ms) => new Promise((done) => {
   const stage = document.querySelector("#stage");
   const sound = document.querySelector("#sound");
@@ -26,7 +27,8 @@ LISTEN = """(during_ms) => new Promise((done) => {
   let last_ms = -Infinity;
   const look = (now_ms) => {
     const sound_s = sound.currentTime;
-    if (sound_s !== last_s && !sound.paused && !sound.seeking && sound.readyState >= 3 && now_ms - last_ms < 20)
+    const in_time = now_ms - last_ms < 20 && performance.now() - now_ms < 20;
+    if (in_time && sound_s !== last_s && !sound.paused && !sound.seeking && sound.readyState >= 3)
       seen.push([sound_s, Number(stage.dataset.soundS), Number(stage.dataset.turnedDeg)]);
     last_s = sound_s;
     last_ms = now_ms;
