@@ -3,10 +3,12 @@
 One thread of a process runs at a time. Where many compute, each takes as much longer, nothing is finished sooner, and
 who only wants a page waits for a turn among all of them, several times over. So one computes, the others in the order
 in which they came, and wait where waiting costs nothing. A long search does not hold them up: once it has computed
-for a second the next begins beside it. Only a share of the threads may compute or wait for it, behind locks too; who
-finds no place there is told to come again. Each process counts for itself.
+for a second the next begins beside it. That second is the processor's: by the wall's clock a busy process would make
+every computation long, let the next begin beside it, and be busier for it. Only a share of the threads may compute or
+wait for it, behind locks too; who finds no place there is told to come again. Each process counts for itself.
 """
 
+import sys
 import threading
 import time
 from collections import deque
@@ -18,7 +20,11 @@ from flask import Flask, current_app
 from service.api.problems import ProblemError
 
 AT_A_TIME = 1  # that compute; with two a page at hand takes twice as long in the 99th percentile, measured
-LONG_S = 1.0  # s; after which who computes no longer counts; nearly all have ended by then
+LONG_S = 1.0  # s of the processor's time; after which who computes no longer counts; nearly all have ended by then
+LEAST_SHARE = (
+    0.1  # of a processor, that counts as computed though less is: who waits for a disk holds nobody up for long
+)
+LOOK_AGAIN_S = 0.05  # s; at the least, till the next look at who computes
 MOST_AT_A_TIME = 8  # with those that have computed for longer
 RETRY_AFTER_S = 2  # s; in which a process computes some twenty of those that wait, 0.1 s each for a tune of 300 notes
 COMPUTING_QUEUE = "discwright computing queue"
@@ -27,19 +33,19 @@ COMPUTING_QUEUE = "discwright computing queue"
 class ComputingQueue:
     """Lets those who compute begin one after the other; shared by the threads of a process."""
 
-    def __init__(self, clock: Callable[[], float] = time.monotonic) -> None:
+    def __init__(self, stopwatch: Callable[[], Callable[[], float]] | None = None) -> None:
         """Open it to as many as like to wait.
 
         Args:
-            clock: Seconds, only ever forward.
+            stopwatch: Called by who begins to compute; what it gives tells, in any thread, the seconds computed since.
         """
         self.places: int | None = None
-        self._clock = clock
+        self._stopwatch = stopwatch or own_stopwatch
         self._taken_count = 0
         self._mine = threading.local()
         self._changed = threading.Condition()
         self._waiting: deque[object] = deque()
-        self._begun_s: dict[object, float] = {}
+        self._computed_s: dict[object, Callable[[], float]] = {}
 
     @contextmanager
     def place(self) -> Iterator[None]:
@@ -86,12 +92,12 @@ class ComputingQueue:
                 finally:
                     self._waiting.remove(mine)
                     self._changed.notify_all()
-                self._begun_s[mine] = self._clock()
+                self._computed_s[mine] = self._stopwatch()
             try:
                 yield
             finally:
                 with self._changed:
-                    del self._begun_s[mine]
+                    del self._computed_s[mine]
                     self._changed.notify_all()
 
     def _wait_till_first(self, mine: object) -> None:
@@ -102,15 +108,29 @@ class ComputingQueue:
             left_s = self._left_s()
             if left_s == 0:
                 return
-            self._changed.wait(left_s)
+            self._changed.wait(None if left_s is None else max(left_s, LOOK_AGAIN_S))
 
     def _left_s(self) -> float | None:
-        """After how long the next may begin though none of those who compute ends; None for never."""
-        if len(self._begun_s) >= MOST_AT_A_TIME:
+        """How much those who compute must compute before the next may begin though none ends; None for never."""
+        if len(self._computed_s) >= MOST_AT_A_TIME:
             return None
-        now_s = self._clock()
-        counted_s = sorted(begun_s for begun_s in self._begun_s.values() if now_s - begun_s < LONG_S)
-        return 0 if len(counted_s) < AT_A_TIME else counted_s[-AT_A_TIME] + LONG_S - now_s
+        left_s = sorted(LONG_S - computed_s() for computed_s in self._computed_s.values())
+        counted_s = [each_s for each_s in left_s if each_s > 0]
+        return 0 if len(counted_s) < AT_A_TIME else counted_s[-AT_A_TIME]
+
+
+def own_stopwatch() -> Callable[[], float]:
+    """Tells what the calling thread computes from now on, in seconds; to be asked only while that thread lives.
+
+    By the processor's time of the thread where the system tells it of another thread, as Linux does, and at least
+    LEAST_SHARE of the time that passes; elsewhere by the time that passes.
+    """
+    begun_s = time.monotonic()
+    if sys.platform != "linux":
+        return lambda: time.monotonic() - begun_s
+    clock = time.pthread_getcpuclockid(threading.get_ident())
+    begun_cpu_s = time.clock_gettime(clock)
+    return lambda: max(time.clock_gettime(clock) - begun_cpu_s, LEAST_SHARE * (time.monotonic() - begun_s))
 
 
 def open_computing_queue(app: Flask, places: int | None) -> ComputingQueue:

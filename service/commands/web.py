@@ -147,8 +147,10 @@ def web_environment(web: WebAsked, counts: str) -> dict[str, str]:
         counts: The folder by which its processes share their counts.
     """
     loopback = {} if os.environ.get("DISCWRIGHT_ON_LOOPBACK") else _on_loopback(web)
-    # Requests are its threads; a library that starts more for each would only stand in their way.
-    return {COUNTS_OF_PROCESSES: counts, "OMP_NUM_THREADS": "1", "OPENBLAS_NUM_THREADS": "1", **loopback}
+    # Requests are its threads; a library that starts more for each would only stand in their way. And what each thread
+    # has freed is there for the others: with a heap for each, memory rises till all of them have computed.
+    alone = {"OMP_NUM_THREADS": "1", "OPENBLAS_NUM_THREADS": "1", "MALLOC_ARENA_MAX": "2"}
+    return {COUNTS_OF_PROCESSES: counts, **alone, **loopback}
 
 
 def new_counts() -> str:

@@ -1,10 +1,12 @@
 """The service under load: `sh tests/run load [MINUTES]`, ten by default; ends with 1 where a bound does not hold.
 
 All on loopback, the service as `discwright serve` starts it, its rates by address set so high that they refuse nobody.
-First its capacity for mixed traffic: clients who wait for each answer, more and more of them, until no more is served.
-Then MINUTES of arrivals at fixed times, 80 of a hundred of that capacity; then twice the capacity, for a minute or a
-tenth of MINUTES; then the 80 of a hundred once more. The client shares the processors with the service: how much it
-takes, and how much all else on the machine, stands beside each figure. Judged are times on a quiet machine alone.
+First its capacity for mixed traffic: clients who wait for each answer, more and more of them, until no more is served;
+then the best number of them for a minute or a tenth of MINUTES, and until the orders they placed are planned: what
+can go on. Then MINUTES of arrivals at fixed times, 80 of a hundred of that capacity; then twice the capacity, for a
+minute or a tenth of MINUTES; then the 80 of a hundred once more. The client shares the processors with the service: how
+much it takes, and how much all else on the machine, stands beside each figure. Judged are times on a quiet machine
+alone.
 """
 
 import asyncio
@@ -32,6 +34,7 @@ def lengths_of(minutes: float) -> Lengths:
     steady_s = 60 * minutes
     return Lengths(
         step_s=min(10.0, max(2.0, steady_s / 20)),
+        capacity_s=min(60.0, max(5.0, steady_s / 10)),
         steady_s=steady_s,
         overload_s=min(60.0, max(5.0, steady_s / 10)),
         after_s=min(30.0, max(5.0, steady_s / 10)),

@@ -29,12 +29,14 @@ class Lengths:
 
     Attributes:
         step_s: One number of clients.
+        capacity_s: The best of these numbers, for the capacity.
         steady_s: The steady load.
         overload_s: Twice the capacity.
         after_s: The steady load once more.
     """
 
     step_s: float
+    capacity_s: float
     steady_s: float
     overload_s: float
     after_s: float
@@ -76,6 +78,8 @@ class Course:
 
     Attributes:
         steps: The closed loops, by their numbers of clients.
+        longest_step: The best of these numbers for longer.
+        planned_after_s: How long afterwards its last orders were planned: answered at once, they are part of the work.
         before: What the service held before the open loops.
         steady: The steady load.
         overload: Twice the capacity.
@@ -84,6 +88,8 @@ class Course:
     """
 
     steps: dict[int, Measured]
+    longest_step: Measured
+    planned_after_s: float
     before: Held
     steady: Measured
     overload: Measured
@@ -92,17 +98,20 @@ class Course:
 
     @property
     def capacity_per_s(self) -> float:
-        """The best rate of the closed loops."""
-        return max(step.served_per_s for step in self.steps.values())
+        """What is served a second, orders planned too, and no more than can go on."""
+        return sustained_per_s(self.longest_step, self.planned_after_s)
 
 
 async def run_course(service: Service, client: Client, lengths: Lengths) -> Course:
     """Go through all parts."""
     await warm_up(client, lengths.step_s)
     steps = await _steps(service, client, lengths.step_s)
-    capacity_per_s = max(step.served_per_s for step in steps.values())
-    steady_per_s = STEADY_SHARE * capacity_per_s
     await rest(service)
+    best = max(steps, key=lambda clients: steps[clients].served_per_s)
+    longest_step = await measured(service, client.closed(best, lengths.capacity_s))
+    planned_after_s = await rest(service)
+    capacity_per_s = sustained_per_s(longest_step, planned_after_s)
+    steady_per_s = STEADY_SHARE * capacity_per_s
     before = held(service.pid)
     steady = await measured(service, client.open(steady_per_s, lengths.steady_s), steady_per_s)
     await rest(service)
@@ -110,7 +119,21 @@ async def run_course(service: Service, client: Client, lengths: Lengths) -> Cour
     overload = await measured(service, client.open(much_per_s, lengths.overload_s), much_per_s)
     after = await measured(service, client.open(steady_per_s, lengths.after_s), steady_per_s)
     await rest(service)
-    return Course(steps=steps, before=before, steady=steady, overload=overload, after=after, rested=held(service.pid))
+    return Course(
+        steps=steps,
+        longest_step=longest_step,
+        planned_after_s=planned_after_s,
+        before=before,
+        steady=steady,
+        overload=overload,
+        after=after,
+        rested=held(service.pid),
+    )
+
+
+def sustained_per_s(part: Measured, planned_after_s: float) -> float:
+    """The rate of a closed loop and of the work it left behind."""
+    return part.served_per_s * part.took_s / (part.took_s + planned_after_s)
 
 
 async def warm_up(client: Client, for_s: float) -> list[Told]:
@@ -163,12 +186,17 @@ async def _look_at_memory(pids: list[int], at_s: list[float], memory: list[int])
         await asyncio.sleep(MEMORY_EVERY_S)
 
 
-async def rest(service: Service) -> None:
-    """Wait until the service has nothing left to do, its last connections closed and its last orders planned."""
-    until_s = now_s() + QUIET_WITHIN_S
-    while now_s() < until_s:
+async def rest(service: Service) -> float:
+    """Wait until the service has nothing left to do, its last connections closed and its last orders planned.
+
+    Gives for how many seconds it had still much to do, in whole looks of QUIET_S.
+    """
+    begun_s = looked_s = now_s()
+    while looked_s < begun_s + QUIET_WITHIN_S:
         pids = processes_of(service.pid)
         before_s = processor_s(pids)
         await asyncio.sleep(QUIET_S)
         if processor_s(pids) - before_s < QUIET_SHARE * QUIET_S:
-            return
+            break
+        looked_s = now_s()
+    return looked_s - begun_s

@@ -44,6 +44,11 @@ def _tell_steps(course: Course) -> None:
         for clients, step in course.steps.items()
     ]
     say_table(["clients who wait", "served a second", "median ms", "processors"], rows)
+    longest = course.longest_step
+    say(
+        f"the best of these for {longest.took_s:.0f} s: {longest.served_per_s:.1f} a second, {_taken(longest)}; "
+        f"its orders were planned {course.planned_after_s:.0f} s later"
+    )
     say(f"capacity: {course.capacity_per_s:.1f} a second\n")
 
 

@@ -35,6 +35,8 @@ def a_minute(took_s: float = 0.01) -> list[Told]:
 
 WELL = Course(
     steps={1: part(told())},
+    longest_step=part(*a_minute()),
+    planned_after_s=0.0,
     before=HELD,
     steady=part(*a_minute(), memory_mb=(500,) * 120),
     overload=part(*a_minute(), told(kind="page", status=503)),
@@ -49,6 +51,12 @@ def missed(course: Course) -> str:
 
 def test_a_course_without_fault_holds() -> None:
     assert missed(WELL) == ""
+
+
+def test_the_capacity_is_what_is_served_by_the_time_all_orders_are_planned() -> None:
+    course = replace(WELL, longest_step=part(*a_minute()), planned_after_s=5.0)
+
+    assert course.capacity_per_s == pytest.approx(300 / (10 + 5))
 
 
 def test_a_refusal_under_the_steady_load_does_not_hold() -> None:

@@ -1,6 +1,8 @@
 """The queue of those who compute: few at a time, in their order, and long ones beside them."""
 
+import sys
 import threading
+import time
 from collections.abc import Callable, Iterator
 from concurrent.futures import Future, ThreadPoolExecutor
 from contextlib import contextmanager
@@ -11,11 +13,13 @@ from flask import Flask
 from service.api import computing_queue
 from service.api.computing_queue import (
     AT_A_TIME,
+    LEAST_SHARE,
     LONG_S,
     MOST_AT_A_TIME,
     RETRY_AFTER_S,
     ComputingQueue,
     open_computing_queue,
+    own_stopwatch,
 )
 from service.api.problems import ProblemError
 
@@ -64,7 +68,7 @@ class Shop:
         return job
 
     def _count(self) -> int:
-        return len(self.queue._waiting) + len(self.queue._begun_s)
+        return len(self.queue._waiting) + len(self.queue._computed_s)
 
 
 def until(holds: Callable[[], bool]) -> None:
@@ -74,6 +78,16 @@ def until(holds: Callable[[], bool]) -> None:
             return
         ended.wait(0.001)
     raise AssertionError("it did not come to hold")
+
+
+def stopwatch_by(now_s: list[float]) -> Callable[[], Callable[[], float]]:
+    """Stopwatches that all tell the time of a test's own clock."""
+
+    def begin() -> Callable[[], float]:
+        begun_s = now_s[0]
+        return lambda: now_s[0] - begun_s
+
+    return begin
 
 
 @contextmanager
@@ -100,7 +114,7 @@ def test_no_more_than_a_few_compute_at_a_time_and_the_others_follow_in_the_order
 
 def test_one_who_computes_for_long_lets_the_next_begin_beside_him() -> None:
     now_s = [0.0]
-    with shop(ComputingQueue(lambda: now_s[0])) as open_shop:
+    with shop(ComputingQueue(stopwatch_by(now_s))) as open_shop:
         for _ in range(AT_A_TIME):
             open_shop.comes()
         until(lambda: len(open_shop.begun) == AT_A_TIME)
@@ -111,16 +125,50 @@ def test_one_who_computes_for_long_lets_the_next_begin_beside_him() -> None:
 def test_one_who_waits_begins_when_a_long_one_has_computed_for_a_second_though_nobody_ends(
     monkeypatch: pytest.MonkeyPatch,
 ) -> None:
-    monkeypatch.setattr(computing_queue, "LONG_S", 0.1)
+    monkeypatch.setattr(computing_queue, "LONG_S", 0.02)
     with shop() as open_shop:
         jobs = [open_shop.comes() for _ in range(AT_A_TIME + 1)]
         assert jobs[-1].has_begun.wait(WAIT_S)
         assert not any(job.done.done() for job in jobs)
 
 
+@pytest.mark.skipif(sys.platform != "linux", reason="elsewhere no thread's processor time can be asked for by another")
+def test_who_waits_for_the_processor_is_not_long_by_what_others_compute() -> None:
+    stopwatches: list[Callable[[], float]] = []
+    has_begun, may_end = threading.Event(), threading.Event()
+
+    def wait() -> None:
+        stopwatches.append(own_stopwatch())
+        has_begun.set()
+        may_end.wait(WAIT_S)
+
+    with ThreadPoolExecutor(max_workers=1) as pool:
+        waiting = pool.submit(wait)
+        assert has_begun.wait(WAIT_S)
+        begun_s = time.monotonic()
+        mine = own_stopwatch()
+        while mine() < 0.1:
+            pass
+        waited_s = stopwatches[0]()
+        passed_s = time.monotonic() - begun_s
+        may_end.set()
+        waiting.result(WAIT_S)
+
+    little_s = 0.05  # of its own
+    assert waited_s < LEAST_SHARE * passed_s + little_s
+
+
+def test_who_waits_for_something_else_is_long_in_the_end() -> None:
+    watch = own_stopwatch()
+    begun_s = time.monotonic()
+    threading.Event().wait(0.1)
+    assert watch() >= LEAST_SHARE * 0.1
+    assert watch() <= time.monotonic() - begun_s
+
+
 def test_never_do_more_than_the_most_compute_however_long_each_takes() -> None:
     now_s = [0.0]
-    with shop(ComputingQueue(lambda: now_s[0])) as open_shop:
+    with shop(ComputingQueue(stopwatch_by(now_s))) as open_shop:
         for number in range(MOST_AT_A_TIME):
             now_s[0] = number * LONG_S
             assert open_shop.comes().has_begun.wait(WAIT_S)

@@ -100,7 +100,8 @@ def test_an_interrupt_ends_without_a_trace(capsys: pytest.CaptureFixture[str]) -
 @pytest.fixture
 def own_environment(monkeypatch: pytest.MonkeyPatch) -> None:
     """What `web` sets for the program it becomes is set no more after the test."""
-    for name in ("DISCWRIGHT_ON_LOOPBACK", "PROMETHEUS_MULTIPROC_DIR", "OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS"):
+    set_by_it = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MALLOC_ARENA_MAX")
+    for name in ("DISCWRIGHT_ON_LOOPBACK", "PROMETHEUS_MULTIPROC_DIR", *set_by_it):
         monkeypatch.setenv(name, "")
 
 
