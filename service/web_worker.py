@@ -30,6 +30,7 @@ from service.limits import Limits
 from service.web_addresses import address_of
 from service.web_gathering import Gathering, Pace, SlowBodyError, Step
 from service.web_refusals import refusal, refusal_of
+from service.web_turns import Turns
 
 READING_SHARE = 0.25  # of the threads, for bodies too long to be gathered
 SPARE_THREADS = 2  # beside the others, for those who ask how the service is
@@ -129,6 +130,7 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         self._waiting_to_read: deque[Connection] = deque()  # of those too
         self._leaving: dict[Connection, None] = {}  # in the order in which they will have left
         self._spare: ThreadPoolExecutor  # like `tpool`
+        self._turns = Turns()
         self._busy = 0
         self._reading: Counter[str] = Counter()  # by address
         self._most_reading = max(1, int(self.cfg.threads * READING_SHARE))
@@ -270,9 +272,12 @@ class GatheringWorker(ThreadWorker):  # type: ignore[misc]
         is_spare = self._asks_how_it_is(connection)
         self._busy += not is_spare
         connection.is_spare = is_spare
-        pool = self._spare if is_spare else self.tpool
-        done = pool.submit(self.handle, connection)
+        done = self._spare.submit(self.handle, connection) if is_spare else self.tpool.submit(self._handle, connection)
         done.add_done_callback(lambda future: self.method_queue.defer(self.finish_request, connection, future))
+
+    def _handle(self, connection: Connection) -> bool:
+        with self._turns.turn():
+            return bool(self.handle(connection))
 
     def _asks_how_it_is(self, connection: Connection) -> bool:
         return connection.gathering.path in SPARE_PATHS and not connection.reads_on

@@ -18,6 +18,7 @@ from contextlib import contextmanager
 from flask import Flask, current_app
 
 from service.api.problems import ProblemError
+from service.web_turns import give_up_turn
 
 AT_A_TIME = 1  # that compute; with two a page at hand takes twice as long in the 99th percentile, measured
 LONG_S = 1.0  # s of the processor's time; after which who computes no longer counts; nearly all have ended by then
@@ -68,6 +69,7 @@ class ComputingQueue:
                     headers={"Retry-After": str(RETRY_AFTER_S)},
                 )
             self._taken_count += 1
+        give_up_turn()
         self._mine.has_place = True
         try:
             yield

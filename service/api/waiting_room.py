@@ -11,6 +11,8 @@ from collections import Counter
 
 from flask import Flask, current_app
 
+from service.web_turns import give_up_turn
+
 WAITING_ROOM = "discwright waiting room"
 SHARE_OF_A_KEY = 0.5  # of the places, rounded up
 
@@ -36,7 +38,8 @@ class WaitingRoom:
             if is_full or (self._of_a_key is not None and self._taken[key_id] >= self._of_a_key):
                 return False
             self._taken[key_id] += 1
-            return True
+        give_up_turn()
+        return True
 
     def leave(self, key_id: str) -> None:
         """Give a place back."""
