@@ -11,8 +11,7 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 
 AT_A_TIME = 4  # that work; with more, health and what is at hand take longer under twice the load, measured
-# s; after which who works no longer counts: it waits for a database, for a slow client, or for a disk.
-LONG_S = 0.25
+LONG_S = 0.25  # s; after which who works no longer counts: it waits for a database, a slow client or a disk
 
 _held = threading.local()
 
@@ -56,9 +55,9 @@ class Turns:
 
 
 def give_up_turn() -> None:
-    """Let the next begin: called by who is about to wait for long, or for a turn of another sort; nothing without one."""
+    """Let the next begin: for who is about to wait for long, or for a turn of another sort. Nothing without a turn."""
     held: tuple[Turns, threading.Event] | None = getattr(_held, "turn", None)
     if held is not None:
         _held.turn = None
         turns, mine = held
-        turns._end(mine)  # noqa: SLF001 -- one's own turn
+        turns._end(mine)
