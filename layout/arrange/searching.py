@@ -66,36 +66,40 @@ class NoWay:
 
 
 class _Candidate:
-    """One way, as far as it has been looked at. Its problems are posed when it is first stepped."""
+    """One way, as far as it has been looked at. Its problems are posed when it is first stepped.
+
+    Attributes:
+        way: The way.
+        problems: As they were solved: a solving may widen its problem. Empty as `solved` is.
+        solved: The solutions of its problems; empty till they are all solved, and again once they are let go.
+        impossible: What shows that it cannot be solved; None where it is solved, or not known yet.
+    """
 
     def __init__(self, way: Way, pose: Callable[[Way], Sequence[Problem]], first_bound: int) -> None:
         self.way = way
         self._pose = pose
         self._first_bound = first_bound
         self._solvings: list[Solving] | None = None
-        self.solved: tuple[Solved, ...] | None = None
+        self._kept_and_bound: tuple[int, int] | None = None
+        self.problems: tuple[Problem, ...] = ()
+        self.solved: tuple[Solved, ...] = ()
         self.impossible: tuple[int, Problem, Impossible] | None = None
-
-    @property
-    def problems(self) -> tuple[Problem, ...]:
-        """As they were solved: a solving may widen its problem."""
-        return tuple(solving.problem for solving in self._solvings or ())
-
-    @property
-    def taken_apart(self) -> bool:
-        """Whether every part of it has been solved by itself."""
-        return self._solvings is not None and all(solving.taken_apart for solving in self._solvings)
 
     @property
     def is_over(self) -> bool:
         """Whether it is solved, or cannot be."""
-        return self.solved is not None or self.impossible is not None
+        return self.is_solved or self.impossible is not None
+
+    @property
+    def is_solved(self) -> bool:
+        """Whether it has a solution, let go or not."""
+        return self._kept_and_bound is not None
 
     @property
     def bound(self) -> int:
         """Nothing on this way is worth more."""
-        if self.solved is not None:
-            return sum(solved.bound for solved in self.solved)
+        if self._kept_and_bound is not None:
+            return self._kept_and_bound[1]
         if self._solvings is None:
             return self._first_bound
         return min(self._first_bound, sum(solving.bound for solving in self._solvings))
@@ -103,7 +107,7 @@ class _Candidate:
     @property
     def kept(self) -> int:
         """What its solution is worth; 0 before there is one."""
-        return sum(solved.worth for solved in self.solved or ())
+        return 0 if self._kept_and_bound is None else self._kept_and_bound[0]
 
     @property
     def rank(self) -> tuple[int, float, int, int]:
@@ -128,7 +132,13 @@ class _Candidate:
                 self.impossible = (disc, solving.problem, one)
                 return
             solved.append(one)
-        self.solved = tuple(solved)
+        self.problems, self.solved = tuple(solving.problem for solving in self._solvings), tuple(solved)
+        self._solvings = None  # some megabytes for a long tune
+        self._kept_and_bound = sum(one.worth for one in solved), sum(one.bound for one in solved)
+
+    def let_go(self) -> None:
+        """Forget problems and solutions, some megabytes for a long tune; what they are worth stays known."""
+        self.problems, self.solved = (), ()
 
 
 def _rank(worth: int, way: Way) -> tuple[int, float, int, int]:
@@ -160,11 +170,11 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
             heapq.heappush(heap, (_reversed(candidate), place))
             continue
         over.append(candidate)
-        if candidate.solved is not None:
-            finished.append(candidate)
+        if candidate.is_solved:
+            _finish(candidate, finished)
     known = {one.way: one.impossible for one in over if one.impossible is not None and one.impossible[2].is_known}
     if finished:
-        not_known = [one for one in over if one.solved is None and one.way not in known]
+        not_known = [one for one in over if not one.is_solved and one.way not in known]
         return _found(finished, [left[place] for _, place in heap] + not_known, budget)
     return NoWay(shown_by=known, not_known=len(left) - len(known))
 
@@ -198,9 +208,22 @@ def _begun(
 def _to_its_end(candidate: _Candidate, budget: Budget, finished: list[_Candidate]) -> _Candidate:
     while not candidate.is_over:
         candidate.step(budget)
-    if candidate.solved is not None:
-        finished.append(candidate)
+    if candidate.is_solved:
+        _finish(candidate, finished)
     return candidate
+
+
+def _finish(candidate: _Candidate, finished: list[_Candidate]) -> None:
+    """Add a solved one to those finished; of them all only the best is still held with its solutions."""
+    finished.append(candidate)
+    best = _best(finished)
+    for one in finished:
+        if one is not best:
+            one.let_go()
+
+
+def _best(finished: Sequence[_Candidate]) -> _Candidate:
+    return max(finished, key=lambda candidate: _rank(candidate.kept, candidate.way))
 
 
 def _reversed(candidate: _Candidate) -> tuple[float, ...]:
@@ -220,7 +243,7 @@ def _enough(finished: Sequence[_Candidate], next_one: _Candidate, budget: Budget
 
 
 def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: Budget) -> Found:
-    best = max(finished, key=lambda candidate: _rank(candidate.kept, candidate.way))
+    best = _best(finished)
     bound = max(candidate.bound for candidate in [*finished, *left])
     told: dict[int, Tried] = {}
     ranked = sorted(finished, key=lambda candidate: _rank(candidate.kept, candidate.way), reverse=True)
@@ -230,14 +253,14 @@ def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: B
             Tried(
                 semitones=candidate.way.semitones,
                 speed_factor=candidate.way.speed_factor,
-                kept=candidate.kept if candidate.solved is not None else None,
+                kept=candidate.kept if candidate.is_solved else None,
                 bound=candidate.bound,
             ),
         )
     return Found(
         way=best.way,
         problems=best.problems,
-        solved=best.solved or (),
+        solved=best.solved,
         kept=best.kept,
         bound=max(bound, best.kept),
         tried=tuple(list(told.values())[:MOST_TOLD]),
@@ -254,7 +277,7 @@ def _by_transposition(known: Sequence[_Candidate]) -> tuple[Transposed, ...]:
     return tuple(
         Transposed(
             semitones=semitones,
-            kept=max((one.kept for one in speeds[semitones] if one.solved is not None), default=None),
+            kept=max((one.kept for one in speeds[semitones] if one.is_solved), default=None),
             bound=max(one.bound for one in speeds[semitones]),
         )
         for semitones in sorted(speeds)

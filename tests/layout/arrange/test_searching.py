@@ -1,5 +1,6 @@
 """The search over transpositions and speeds, and what ends it early."""
 
+import weakref
 from collections.abc import Callable, Iterator
 from itertools import count
 
@@ -9,6 +10,7 @@ import pytest
 from layout.arrange import Arrangement, arrange
 from layout.arrange.arrangement import Worth
 from layout.arrange.budget import Budget
+from layout.arrange.problem import Problem
 from layout.arrange.searching import MOST_TOLD, Found, NoWay, Way, search
 from layout.read import Score
 from tests.layout.arrange.by_hand import Asked, problem_with
@@ -61,6 +63,25 @@ def test_the_way_that_keeps_most_wins_and_of_equals_the_nearest_to_as_written(
 
     assert found.way == best
     assert (found.kept, found.bound, found.stopped) == (max(worths.values()), max(worths.values()), None)
+
+
+def test_of_ways_that_are_solved_only_the_best_is_held_with_its_problems() -> None:
+    worths = {way(semitones): 100 - semitones for semitones in range(MOST_TOLD)}
+    posed: list[weakref.ref[Problem]] = []
+    held: list[int] = []  # when each is posed
+
+    def pose(one: Way) -> list[Problem]:
+        held.append(sum(known() is not None for known in posed))
+        problem = problem_with([Asked(at_ms=0, worth=worths[one])])
+        posed.append(weakref.ref(problem))
+        return [problem]
+
+    found = search(worths, pose, Budget())
+
+    assert isinstance(found, Found)
+    assert [one.kept for one in found.tried] == [100, 99, 98, 97, 96]
+    assert held == [0, 1, 1, 1, 1]
+    assert [known() for known in posed] == [*found.problems, None, None, None, None]
 
 
 def test_each_transposition_is_told_once_at_its_best_speed_best_first() -> None:
