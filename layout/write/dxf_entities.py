@@ -23,6 +23,7 @@ from layout.write.plain_text import MOST_DXF_STRING, dxf_text
 
 APP_ID = "DISCWRIGHT"  # under which lettering carries its words as extended data
 _STRING = 1000  # DXF reference: a string of extended data
+_AT_A_TIME = 1000  # entities; the numbers of 8,000 as texts of their own take 6 MB, and no less time
 _HEXADECIMAL = 16  # a handle is a number in hexadecimal digits
 
 
@@ -149,7 +150,9 @@ class WrittenEntities(EntitySection):
         """Add one entity for each row of numbers, in the order in which they stand in the shape."""
         on_layer = layer.replace("%", "%%")
         form = f"  0\n{kind}\n  5\n%X\n330\n{self._owner}\n100\nAcDbEntity\n  8\n{on_layer}\n100\n{subclass}\n{shape}"
-        rows = as_repr(numbers.reshape(len(numbers), math.prod(numbers.shape[1:])))
-        first = int(str(self._handles), _HEXADECIMAL)
-        self._text.append("".join(form % (first + place, *row) for place, row in enumerate(rows)))
-        self._handles.reset(f"{first + len(rows):X}")
+        rows = numbers.reshape(len(numbers), math.prod(numbers.shape[1:]))
+        handle = int(str(self._handles), _HEXADECIMAL)
+        for begin in range(0, len(rows), _AT_A_TIME):
+            some = as_repr(rows[begin : begin + _AT_A_TIME])
+            self._text.append("".join([form % (handle + place, *row) for place, row in enumerate(some, begin)]))
+        self._handles.reset(f"{handle + len(rows):X}")

@@ -1,6 +1,7 @@
 """How JSON files are written: one field to a line, and one entry of a list to a line."""
 
 import json
+from collections.abc import Iterator
 from typing import Any
 
 _WRITER = json.JSONEncoder(ensure_ascii=False, allow_nan=False)  # json.dumps makes one for every line
@@ -8,6 +9,9 @@ _WRITER = json.JSONEncoder(ensure_ascii=False, allow_nan=False)  # json.dumps ma
 
 def json_lines(record: dict[str, Any]) -> bytes:
     """The record as UTF-8 JSON, its fields in their order.
+
+    Args:
+        record: Its lists may also be iterators, so that the entries of a long one are not all there at once.
 
     Raises:
         ValueError: A number is not finite: a fault of the program, never of an input.
@@ -18,8 +22,9 @@ def json_lines(record: dict[str, Any]) -> bytes:
 
 
 def _value(value: Any) -> str:
-    if isinstance(value, list) and value:
-        return "[\n" + ",\n".join(_json(entry) for entry in value) + "\n]"
+    if isinstance(value, list | Iterator):
+        entries = ",\n".join(map(_json, value))
+        return f"[\n{entries}\n]" if entries else "[]"
     return _json(value)
 
 

@@ -1,6 +1,7 @@
 """layout.json: everything about a layout, for programs. Fields may be added, never renamed."""
 
 import math
+from collections.abc import Iterator
 from typing import Any
 
 import numpy as np
@@ -28,7 +29,7 @@ def write_layout_json(laid_out: LaidOut, *, despite_findings: str | None) -> byt
     Raises:
         ValueError: A number of the layout is not finite: a fault of the program, never of an input.
     """
-    return json_lines(layout_record(laid_out, despite_findings=despite_findings))
+    return json_lines(_fields(laid_out, despite_findings=despite_findings))
 
 
 def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
@@ -43,6 +44,12 @@ def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
         laid_out: The layout.
         despite_findings: The reason for which a disc with an error is cut all the same; None where none is.
     """
+    fields = _fields(laid_out, despite_findings=despite_findings)
+    return {name: list(value) if isinstance(value, Iterator) else value for name, value in fields.items()}
+
+
+def _fields(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
+    """The record, in which lists as long as the tune are iterators."""
     arrangement, movement, cutter = laid_out.arrangement, laid_out.disc.movement, laid_out.disc.cutter
     score = laid_out.score
     return {
@@ -78,7 +85,7 @@ def layout_record(laid_out: LaidOut, *, despite_findings: str | None) -> Record:
     }
 
 
-def _notes(score: Score, arrangement: Arrangement) -> list[Record]:
+def _notes(score: Score, arrangement: Arrangement) -> Iterator[Record]:
     rows = zip(
         score.onset_s.tolist(),
         score.duration_s.tolist(),
@@ -91,7 +98,7 @@ def _notes(score: Score, arrangement: Arrangement) -> list[Record]:
         strict=True,
     )
     names = ("onset_s", "duration_s", "pitch", "velocity", "channel", "weight", "voice", "melody")
-    return [{"note": note} | dict(zip(names, row, strict=True)) for note, row in enumerate(rows)]
+    return ({"note": note} | dict(zip(names, row, strict=True)) for note, row in enumerate(rows))
 
 
 def _voices(arrangement: Arrangement) -> list[str | None]:
@@ -102,7 +109,7 @@ def _voices(arrangement: Arrangement) -> list[str | None]:
     return [(None, "highest", "lowest", "inner")[place] for place in places.tolist()]
 
 
-def _projections(laid_out: LaidOut) -> list[Record]:
+def _projections(laid_out: LaidOut) -> Iterator[Record]:
     disc, arrangement = laid_out.disc, laid_out.arrangement
     teeth: dict[int, list[int]] = {}
     pitches: dict[int, str] = {}
@@ -121,7 +128,7 @@ def _projections(laid_out: LaidOut) -> list[Record]:
         arrangement.again_of.tolist(),
         strict=True,
     )
-    return [
+    return (
         {
             "track": track,
             "teeth": teeth.get(track, []),
@@ -135,4 +142,4 @@ def _projections(laid_out: LaidOut) -> list[Record]:
         }
         | ({} if again_of == NO_NOTE else {"again_of": again_of})
         for track, radius_mm, angle_rad, asked_s, sounds_s, octave_semitones, notes, again_of in rows
-    ]
+    )

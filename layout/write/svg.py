@@ -7,11 +7,10 @@ from layout.write.svg_facts import facts, legend
 from layout.write.svg_findings import findings_list, ringed, shown_kinds
 from layout.write.svg_header import corner_words, header, header_height_mm, is_good, level_counts
 from layout.write.svg_markers import markers
-from layout.write.svg_page import describe, new_drawing, page_for
+from layout.write.svg_page import bytes_of, describe, new_drawing, page_for
 from layout.write.svg_signs import index_flag, row_of_star_wheels, turning_arrow
 
 _ABOVE, _BELOW, _BETWEEN = 4.0, 4.5, 2.2  # gaps in hundredths of the page's width
-_HEAD = b'<?xml version="1.0" encoding="UTF-8"?>\n'
 
 
 def write_svg(plan: CutPlan, laid_out: LaidOut) -> bytes:
@@ -54,7 +53,7 @@ def write_svg(plan: CutPlan, laid_out: LaidOut) -> bytes:
     ):
         drawing.add(group)
     describe(drawing, *_described(plan, laid_out))
-    return b"".join([_HEAD, drawing.tostring().encode(), b"\n"])
+    return bytes_of(drawing)
 
 
 def _described(plan: CutPlan, laid_out: LaidOut) -> tuple[str, str]:

@@ -1,8 +1,10 @@
 """The sheet the picture stands on: its units, and the ways anything is put on it."""
 
+import io
 import unicodedata
 from dataclasses import dataclass, replace
 from typing import Literal
+from xml.etree.ElementTree import ElementTree  # nosec B405 -- written here, never read
 
 import svgwrite
 from svgwrite.base import Desc, Title
@@ -29,7 +31,7 @@ _MIDDLE, _BROAD, _FULL = 0.64, 0.79, 1.0
 _BOLD = 1.16
 _LATIN = 0x250  # the first character after the Latin letters
 _SIZES = 8  # steps from the largest letters to the smallest
-_LATIN = 0x250  # the first character after the Latin letters
+_HEAD = b'<?xml version="1.0" encoding="UTF-8"?>\n'
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -110,6 +112,15 @@ def describe(drawing: svgwrite.Drawing, title: str, description: str) -> None:
     drawing.elements[:0] = texts
     drawing["role"] = "img"
     drawing["aria-labelledby"] = "title description"
+
+
+def bytes_of(drawing: svgwrite.Drawing) -> bytes:
+    """The file of a drawing, UTF-8, written once: a large one is some megabytes."""
+    file = io.BytesIO(_HEAD)
+    file.seek(0, io.SEEK_END)
+    ElementTree(drawing.get_xml()).write(file, encoding="utf-8", xml_declaration=False)
+    file.write(b"\n")
+    return file.getvalue()
 
 
 def words(text: str, at_mm: tuple[float, float], face: Face) -> Text:

@@ -13,6 +13,7 @@ from layout.write.svg_disc import layer_group
 from layout.write.svg_page import (
     Face,
     Page,
+    bytes_of,
     describe,
     fitted,
     new_drawing,
@@ -34,7 +35,6 @@ from layout.write.svg_style import (
     WORD_GREY,
 )
 
-_HEAD = '<?xml version="1.0" encoding="UTF-8"?>\n'
 _TITLE = "Trial piece: not a disc"
 _LEAST_TITLE_SIZE = 3.0
 _LINE_HEIGHT = 1.4  # of the letter size
@@ -80,7 +80,7 @@ def write_trial_svg(piece: TrialPiece) -> bytes:
     for group in (head, _disc(page), *_layers(piece, page), legend, told):
         drawing.add(group)
     describe(drawing, f"{_TITLE}, for {piece.movement_id} on {piece.cutter_id}", _described(piece))
-    return f"{_HEAD}{drawing.tostring()}\n".encode()
+    return bytes_of(drawing)
 
 
 def _lead(piece: TrialPiece) -> str:
