@@ -17,6 +17,7 @@ from layout.errors import LayoutError
 MOST_CPU_S = 2.0
 MOST_MIB = 300.0
 OURS = "/layout/"
+FULL = 3  # what a process ends with that has no fault and no room for more inputs
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -51,7 +52,7 @@ class Fault:
 def fault_of(door: Door, data: bytes, most_cpu_s: float = MOST_CPU_S) -> Fault | None:
     """What is wrong with the answer to an input; None where nothing is."""
     Path("/proc/self/clear_refs").write_text("5")  # the peak is counted anew from here: proc(5)
-    begun_s, held_mib = time.process_time(), _memory_mib("VmRSS")
+    begun_s, held_mib = time.process_time(), memory_mib("VmRSS")
     try:
         door.answer(data)
     except door.errors as error:
@@ -59,7 +60,7 @@ def fault_of(door: Door, data: bytes, most_cpu_s: float = MOST_CPU_S) -> Fault |
             return Fault(kind="error-without-words", told=repr(error))
     except Exception as error:  # noqa: BLE001 -- whatever comes out is what is looked for
         return Fault(kind=f"{type(error).__name__}-{_place_of(error)}", told="".join(traceback.format_exception(error)))
-    took_s, took_mib = time.process_time() - begun_s, _memory_mib("VmHWM") - held_mib
+    took_s, took_mib = time.process_time() - begun_s, memory_mib("VmHWM") - held_mib
     if took_s > most_cpu_s:
         return Fault(kind="slow", told=f"{took_s:.2f} s of the processor's time, allowed are {most_cpu_s:g}")
     if took_mib > MOST_MIB:
@@ -67,7 +68,8 @@ def fault_of(door: Door, data: bytes, most_cpu_s: float = MOST_CPU_S) -> Fault |
     return None
 
 
-def _memory_mib(field: str) -> float:
+def memory_mib(field: str) -> float:
+    """Of this process, by a field of /proc/self/status: proc(5)."""
     found = re.search(rf"{field}:\s*(\d+) kB", Path("/proc/self/status").read_text())
     assert found is not None
     return int(found[1]) / 1024

@@ -2,7 +2,8 @@
 
 `python -m tests.fuzz.fuzzing DOOR SECONDS FOLDER`, in the environment that `sh tests/run fuzz` makes.
 What is found does not stop the run: the first input of each kind of fault is kept in FOLDER/found with its story, and
-the run goes on. The corpus grows in FOLDER/corpus. Ends 1 where something was found.
+the run goes on. The corpus grows in FOLDER/corpus. Ends with 1 where something was found, else with FULL where the
+process has grown, by some 15 kB an input, till it must begin anew, from what is in the corpus by then.
 """
 
 import logging
@@ -16,10 +17,11 @@ from typing import Any
 
 import atheris  # type: ignore[import-untyped,import-not-found,unused-ignore]  # in an environment of its own
 
-from tests.fuzz.door import Door, Fault, fault_of
+from tests.fuzz.door import FULL, Door, Fault, fault_of, memory_mib
 
 LONGEST_BYTES = 400_000
 HANGS_AFTER_S = 60  # libFuzzer's own watch, on the clock of the wall: for what never ends
+FULL_MIB = 1500.0  # below libFuzzer's own limit, so that an input that is too large is still seen
 OURS_OF_TEN = 7  # of ten changes so many know the format; the others are libFuzzer's
 
 
@@ -39,8 +41,9 @@ def main() -> None:
 
     def try_one(data: bytes) -> None:
         nonlocal tried
-        if time.monotonic() > ends_s:
-            _end(name, tried, found)
+        is_full = memory_mib("VmRSS") > FULL_MIB
+        if is_full or time.monotonic() > ends_s:
+            _end(name, tried, found, FULL if is_full else 0)
         tried += 1
         fault = fault_of(door, data)
         if fault is not None:
@@ -71,12 +74,12 @@ def _keep(found: Path, suffix: str, data: bytes, fault: Fault) -> None:
         kept.with_suffix(".txt").write_text(fault.told)
 
 
-def _end(name: str, tried: int, found: Path) -> Any:
+def _end(name: str, tried: int, found: Path, else_with: int) -> Any:
     kinds = sorted(path.stem for path in found.glob("*.txt"))
     sys.stderr.write(f"{name}: {tried} inputs, {time.process_time():.0f} s of the processor's time, ")
     sys.stderr.write(f"found: {', '.join(kinds) or 'nothing'}\n")
     sys.stderr.flush()
-    os._exit(bool(kinds))  # libFuzzer's loop knows no other way out
+    os._exit(1 if kinds else else_with)  # libFuzzer's loop knows no other way out
 
 
 if __name__ == "__main__":
