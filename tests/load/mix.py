@@ -192,21 +192,21 @@ def _health(_: Shelf, __: random.Random) -> Asked:
     return Asked(request=Request(head="GET /healthz HTTP/1.1"))
 
 
-def _limits(_: Shelf, __: random.Random) -> Asked:
+def _movements(_: Shelf, __: random.Random) -> Asked:
     return Asked(request=Request(head="GET /v1/movements HTTP/1.1"))
 
 
 HEALTH = Kind(name="health", weight=5, why="a proxy and a monitor ask all the time", status=200, make=_health)
 ORDER = Kind(name="order placed", weight=1, why="of five layouts one is bought", status=202, make=_order)
+NEW_LAYOUT = Kind(
+    name="new layout", weight=5, why="the work itself: a tune nobody sent before", status=201, make=_new_layout
+)
+FIRST_DRAWING = Kind(
+    name="first drawing", weight=5, why="each layout is looked at: all files are made", status=200, make=_first_drawing
+)
 KINDS = (
-    Kind(name="new layout", weight=5, why="the work itself: a tune nobody sent before", status=201, make=_new_layout),
-    Kind(
-        name="first drawing",
-        weight=5,
-        why="each layout is looked at: all files are made",
-        status=200,
-        make=_first_drawing,
-    ),
+    NEW_LAYOUT,
+    FIRST_DRAWING,
     Kind(name="same tune again", weight=4, why="forms are sent twice, links lost", status=201, make=_same_tune),
     Kind(name="layout", weight=12, why="a shop's page shows it to others", status=200, make=_layout),
     Kind(name="layout, known", weight=16, why="who has it asks whether it holds: 304", status=304, make=_known_layout),
@@ -217,7 +217,7 @@ KINDS = (
     Kind(name="disc page", weight=4, why="one for each new layout, nearly", status=200, make=_disc_page),
     ORDER,
     Kind(name="order looked at", weight=10, why="a shop asks until it is planned", status=200, make=_order_looked_at),
-    Kind(name="movements", weight=4, why="programs read the catalogue when they start", status=200, make=_limits),
+    Kind(name="movements", weight=4, why="programs read the catalogue when they start", status=200, make=_movements),
     HEALTH,
 )
 

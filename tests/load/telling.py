@@ -6,7 +6,7 @@ from collections.abc import Iterator, Sequence
 from tests.bench.opponents.table import say, say_table, told
 from tests.load.judging import LEAST_JUDGED, MB, share, slope_of
 from tests.load.loops import Told
-from tests.load.mix import HEALTH, KINDS
+from tests.load.mix import FIRST_DRAWING, HEALTH, KINDS, NEW_LAYOUT
 from tests.load.phases import Course, Measured
 
 TAIL_TIMES_MEDIAN = 5.0
@@ -16,6 +16,8 @@ AS_BEFORE = 1.5  # times the median of the steady load
 MEMORY_RISE_SHARE = 0.01  # of all memory, in the time of the steady load; less is no leak that anybody would meet
 LEAST_LOOKS = 24  # at memory; two minutes, else nothing is said of its slope
 SHOWN_FAULTS = 5
+MINUTE_S = 60.0
+COMPUTED = frozenset({NEW_LAYOUT.name, FIRST_DRAWING.name})
 
 
 def tell_course(course: Course) -> list[str]:
@@ -28,6 +30,7 @@ def tell_course(course: Course) -> list[str]:
     ):
         say(f"{name}: {part.wanted_per_s:.1f} arrivals a second, {part.served_per_s:.1f} served, {_taken(part)}")
         _tell_kinds(part)
+    _tell_minutes(course.steady)
     _tell_memory(course.steady)
     _tell_held(course)
     return list(_missed(course))
@@ -71,6 +74,22 @@ def _tell_kinds(part: Measured) -> None:
     say_table(["kind", "asked", "refused", "p50 ms", "p99 ms", "worst ms", "p99/p50"], rows)
     late_ms = 1000 * share([one.late_s for one in part.told], 99)
     say(f"of which the client itself was late, 99 of 100: at most {late_ms:.1f} ms\n")
+
+
+def _tell_minutes(part: Measured) -> None:
+    """The same load minute by minute: whether what was slow was slow all the time, or once."""
+    begun_s = min(one.due_s for one in part.told)
+    minutes: dict[int, list[Told]] = defaultdict(list)
+    for one in part.told:
+        minutes[int((one.due_s - begun_s) / MINUTE_S)].append(one)
+    rows = []
+    for minute, asked in sorted(minutes.items()):
+        cells = []
+        for is_computed in (True, False):
+            took_ms = [1000 * one.took_s for one in served(asked) if (one.kind in COMPUTED) is is_computed]
+            cells += [f"{share(took_ms, of_hundred):.0f}" if took_ms else "" for of_hundred in (50, 99)]
+        rows.append([str(minute + 1), str(len(asked)), str(sum(one.is_refused for one in asked)), *cells])
+    say_table(["minute", "asked", "refused", "computed: p50 ms", "p99 ms", "at hand: p50 ms", "p99 ms"], rows)
 
 
 def _tell_memory(part: Measured) -> None:

@@ -59,6 +59,22 @@ def test_the_capacity_is_what_is_served_by_the_time_all_orders_are_planned() -> 
     assert course.capacity_per_s == pytest.approx(300 / (10 + 5))
 
 
+def test_the_steady_load_is_told_minute_by_minute_with_what_is_computed_apart(
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    slow = [told("new layout", took_s=0.2), told("first drawing", took_s=0.3), told("page", due_s=59.9)]
+    later = [told("new layout", took_s=4.0, due_s=60.0), told("page", took_s=0.02, due_s=61.0), told(status=503)]
+    tell_course(replace(WELL, steady=part(*slow, *later, told(due_s=130.0))))
+
+    printed = capsys.readouterr().out.splitlines()
+    head = next(number for number, line in enumerate(printed) if line.startswith("minute"))
+    assert [line.split() for line in printed[head + 2 : head + 5]] == [
+        ["1", "4", "1", "200", "300", "10", "10"],
+        ["2", "2", "0", "4000", "4000", "20", "20"],
+        ["3", "1", "0", "10", "10"],  # none was computed
+    ]
+
+
 def test_a_refusal_under_the_steady_load_does_not_hold() -> None:
     course = replace(WELL, steady=part(*a_minute(), told(status=503)))
 
