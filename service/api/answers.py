@@ -66,8 +66,10 @@ def document_response(value: Any, request: Request) -> Response:
 
 def matches(tag: str, request: Request) -> bool:
     """Whether If-Match lets an answer with this entity tag be given: any tag, or this one (RFC 9110 section 13.1.1)."""
+    if "If-Match" not in request.headers:
+        return True
     wanted = request.if_match
-    return "If-Match" not in request.headers or wanted.star_tag or wanted.is_strong(tag)
+    return wanted.star_tag or wanted.is_strong(tag)
 
 
 def conditional(response: Response, request: Request) -> Response:

@@ -231,16 +231,17 @@ class LayoutTeller:
         if file_name in CUTTING_FILES and not kept.good_to_cut and not marked:
             raise _kept_back(kept, file_name)
         tag = self._tag(kept, file_name, reason)
+        is_picture = file_name == "disc.svg"
         if _has_already(tag):
             response = Response(status=NOT_MODIFIED, content_type=MEDIA_TYPES[file_name])
         else:
             response = Response(self._content(kept, file_name, reason), content_type=MEDIA_TYPES[file_name])
-        is_picture = file_name == "disc.svg"
-        if is_picture:
+            # Not of 304, which tells of a file no more than a client's cache has to know (RFC 9110 section 15.4.5).
+            response.headers["Content-Disposition"] = content_disposition(
+                _named(kept, not_good=marked), file_name, how="inline" if is_picture else "attachment"
+            )
+        if is_picture:  # of 304 too, for a cache takes over the fields that it has
             response.headers["Content-Security-Policy"] = ONLY_OWN_STYLES
-        response.headers["Content-Disposition"] = content_disposition(
-            _named(kept, not_good=marked), file_name, how="inline" if is_picture else "attachment"
-        )
         # Of one disc all the while, though another version of the program may draw it otherwise: not immutable.
         age = "no-cache" if kept.stopped_by_time else f"max-age={self._limits.file_max_age_s}"
         response.headers["Cache-Control"] = f"private, {age}"

@@ -4,6 +4,7 @@ A browser sends a cookie with every request to the service, whoever's page makes
 must bring the token that only the service's own pages can read, and must not come from another site's page.
 """
 
+from functools import lru_cache
 from urllib.parse import urlsplit
 
 from flask import Request, Response
@@ -17,7 +18,8 @@ FORM_MEDIA_TYPE = "application/x-www-form-urlencoded"
 # A name with __Host- is taken by browsers over https alone, from this host alone (RFC 6265bis section 4.1.3.2).
 COOKIE, SECURE_COOKIE = "discwright", "__Host-discwright"
 OWN_SITES = frozenset({"same-origin", "none"})  # none: a person typed the address or followed a bookmark
-PASSED_ON = ("Forwarded", "X-Forwarded-For", "X-Forwarded-Host", "X-Real-IP", "Via")
+# Fields of a request that came through a proxy, as a WSGI environment names them (PEP 3333).
+PASSED_ON = ("HTTP_FORWARDED", "HTTP_X_FORWARDED_FOR", "HTTP_X_FORWARDED_HOST", "HTTP_X_REAL_IP", "HTTP_VIA")
 
 
 def cookie_of(asked: Request, public_url: str | None) -> str | None:
@@ -91,13 +93,18 @@ def is_of_this_machine(asked: Request, public_url: str | None) -> bool:
 
     The host must be named as this machine's too, or another site's name could be made to lead here.
     """
+    near = is_loopback(asked.remote_addr or "") and _is_of_loopback(asked.host)
+    is_passed_on = any(name in asked.environ for name in PASSED_ON)
+    return near and not is_passed_on and (asked.method in SAFE_METHODS or from_elsewhere(asked, public_url) is None)
+
+
+@lru_cache(maxsize=64)  # every request names one, nearly all the same
+def _is_of_loopback(host: str) -> bool:
+    """Whether the Host of a request is this machine, whatever its port."""
     try:
-        host = urlsplit(f"//{asked.host}").hostname or ""
+        return is_loopback(urlsplit(f"//{host}").hostname or "")
     except ValueError:
-        host = ""
-    passed_on = any(name in asked.headers for name in PASSED_ON)
-    near = is_loopback(asked.remote_addr or "") and is_loopback(host) and not passed_on
-    return near and (asked.method in SAFE_METHODS or from_elsewhere(asked, public_url) is None)
+        return False
 
 
 def _origin_of(url: str | None) -> str | None:
