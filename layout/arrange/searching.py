@@ -114,6 +114,11 @@ class _Candidate:
         """The better the greater: by bound, then nearest to as written, then lower."""
         return _rank(self.bound, self.way)
 
+    @property
+    def rank_kept(self) -> tuple[int, float, int, int]:
+        """The same by what its solution is worth."""
+        return _rank(self.kept, self.way)
+
     def step(self, budget: Budget) -> None:
         """One step on."""
         if self._solvings is None:
@@ -145,6 +150,36 @@ def _rank(worth: int, way: Way) -> tuple[int, float, int, int]:
     return worth, -abs(way.speed_factor - 1), -abs(way.semitones), -way.semitones
 
 
+class _Finished:
+    """The candidates that are solved. Of them all only the best is still held with its solutions.
+
+    Attributes:
+        all: In the order in which they were solved.
+        best: The best of them, of equals the one solved first; None of none.
+        best_ranks: Of the best transpositions, at most MOST_TOLD, that of the best speed of each; the best first.
+    """
+
+    def __init__(self) -> None:
+        self.all: list[_Candidate] = []
+        self.best: _Candidate | None = None
+        self.best_ranks: list[tuple[int, float, int, int]] = []
+        self._rank_of: dict[int, tuple[int, float, int, int]] = {}  # of each transposition, at its best speed
+
+    def add(self, candidate: _Candidate) -> None:
+        """Add one that is solved."""
+        self.all.append(candidate)
+        if self.best is None:
+            self.best = candidate
+        elif candidate.rank_kept > self.best.rank_kept:
+            self.best.let_go()
+            self.best = candidate
+        else:
+            candidate.let_go()
+        rank, semitones = candidate.rank_kept, candidate.way.semitones
+        self._rank_of[semitones] = max(rank, self._rank_of.get(semitones, rank))
+        self.best_ranks = sorted(self._rank_of.values(), reverse=True)[:MOST_TOLD]
+
+
 def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], budget: Budget) -> Found | NoWay:
     """The way that keeps the most.
 
@@ -160,9 +195,9 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
     left = [_Candidate(way, pose, bound) for way, bound in ways.items()]
     heap = [(_reversed(candidate), place) for place, candidate in enumerate(left)]
     heapq.heapify(heap)
-    finished: list[_Candidate] = []
+    finished = _Finished()
     over = _begun(left, heap, budget, finished)
-    while finished and heap and not (budget.spent or _enough(finished, left[heap[0][1]], budget)):
+    while finished.all and heap and not (budget.spent or _enough(finished, left[heap[0][1]], budget)):
         _, place = heapq.heappop(heap)
         candidate = left[place]
         candidate.step(budget)
@@ -171,16 +206,16 @@ def search(ways: Mapping[Way, int], pose: Callable[[Way], Sequence[Problem]], bu
             continue
         over.append(candidate)
         if candidate.is_solved:
-            _finish(candidate, finished)
+            finished.add(candidate)
     known = {one.way: one.impossible for one in over if one.impossible is not None and one.impossible[2].is_known}
-    if finished:
+    if finished.best is not None:
         not_known = [one for one in over if not one.is_solved and one.way not in known]
-        return _found(finished, [left[place] for _, place in heap] + not_known, budget)
+        return _found(finished.best, finished.all, [left[place] for _, place in heap] + not_known, budget)
     return NoWay(shown_by=known, not_known=len(left) - len(known))
 
 
 def _begun(
-    left: Sequence[_Candidate], heap: list[tuple[tuple[float, ...], int]], budget: Budget, finished: list[_Candidate]
+    left: Sequence[_Candidate], heap: list[tuple[tuple[float, ...], int]], budget: Budget, finished: _Finished
 ) -> list[_Candidate]:
     """The candidates that are solved to their end before the search begins, or found impossible on the way.
 
@@ -189,14 +224,14 @@ def _begun(
     search goes on with what may be spent on rulings once its own is spent.
     """
     over: list[_Candidate] = []
-    while heap and not finished and not (over and budget.spent and budget.for_rulings.spent):
+    while heap and not finished.all and not (over and budget.spent and budget.for_rulings.spent):
         _, place = heapq.heappop(heap)
         was_spent, before = budget.spent, budget.looks_spent
         over.append(_to_its_end(left[place], budget, finished))
         if was_spent:
             budget.for_rulings.spend_looks(budget.looks_spent - before + LOOKS_TO_BEGIN)
-    if finished and heap:
-        same = [entry for entry in heap if left[entry[1]].way.semitones == finished[0].way.semitones]
+    if finished.all and heap:
+        same = [entry for entry in heap if left[entry[1]].way.semitones == finished.all[0].way.semitones]
         if same:
             slowest = min(same, key=lambda entry: left[entry[1]].way.speed_factor)
             heap.remove(slowest)
@@ -205,48 +240,30 @@ def _begun(
     return over
 
 
-def _to_its_end(candidate: _Candidate, budget: Budget, finished: list[_Candidate]) -> _Candidate:
+def _to_its_end(candidate: _Candidate, budget: Budget, finished: _Finished) -> _Candidate:
     while not candidate.is_over:
         candidate.step(budget)
     if candidate.is_solved:
-        _finish(candidate, finished)
+        finished.add(candidate)
     return candidate
-
-
-def _finish(candidate: _Candidate, finished: list[_Candidate]) -> None:
-    """Add a solved one to those finished; of them all only the best is still held with its solutions."""
-    finished.append(candidate)
-    best = _best(finished)
-    for one in finished:
-        if one is not best:
-            one.let_go()
-
-
-def _best(finished: Sequence[_Candidate]) -> _Candidate:
-    return max(finished, key=lambda candidate: _rank(candidate.kept, candidate.way))
 
 
 def _reversed(candidate: _Candidate) -> tuple[float, ...]:
     return tuple(-one for one in candidate.rank)
 
 
-def _enough(finished: Sequence[_Candidate], next_one: _Candidate, budget: Budget) -> bool:
+def _enough(finished: _Finished, next_one: _Candidate, budget: Budget) -> bool:
     """Whether nothing left can be the best, nor among the transpositions told unless those cost too much to know."""
-    best: dict[int, tuple[int, float, int, int]] = {}
-    for candidate in finished:
-        rank = _rank(candidate.kept, candidate.way)
-        best[candidate.way.semitones] = max(best.get(candidate.way.semitones, rank), rank)
-    told = sorted(best.values(), reverse=True)[:MOST_TOLD]
+    told = finished.best_ranks
     if not told or next_one.rank >= told[0]:
         return False
     return budget.nodes_spent > NODES_TO_TELL or (len(told) == MOST_TOLD and next_one.rank < told[-1])
 
 
-def _found(finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: Budget) -> Found:
-    best = _best(finished)
+def _found(best: _Candidate, finished: Sequence[_Candidate], left: Sequence[_Candidate], budget: Budget) -> Found:
     bound = max(candidate.bound for candidate in [*finished, *left])
     told: dict[int, Tried] = {}
-    ranked = sorted(finished, key=lambda candidate: _rank(candidate.kept, candidate.way), reverse=True)
+    ranked = sorted(finished, key=lambda candidate: candidate.rank_kept, reverse=True)
     for candidate in [*ranked, *sorted(left, key=lambda candidate: candidate.rank, reverse=True)]:
         told.setdefault(
             candidate.way.semitones,

@@ -2,8 +2,9 @@
 
 `python -m tests.fuzz.fuzzing DOOR SECONDS FOLDER`, in the environment that `sh tests/run fuzz` makes.
 What is found does not stop the run: the first input of each kind of fault is kept in FOLDER/found with its story, and
-the run goes on. The corpus grows in FOLDER/corpus. Ends with 1 where something was found, else with FULL where the
-process has grown, by some 15 kB an input, till it must begin anew, from what is in the corpus by then.
+the run goes on. The corpus grows in FOLDER/corpus. Ends with FULL where the process has
+grown, by some 15 kB an input, till it must begin anew, from what is in the corpus by then; else with 1 where something
+was found.
 """
 
 import logging
@@ -43,7 +44,7 @@ def main() -> None:
         nonlocal tried
         is_full = memory_mib("VmRSS") > FULL_MIB
         if is_full or time.monotonic() > ends_s:
-            _end(name, tried, found, FULL if is_full else 0)
+            _end(name, tried, found, ends_with=FULL if is_full else 0)
         tried += 1
         fault = fault_of(door, data)
         if fault is not None:
@@ -74,12 +75,12 @@ def _keep(found: Path, suffix: str, data: bytes, fault: Fault) -> None:
         kept.with_suffix(".txt").write_text(fault.told)
 
 
-def _end(name: str, tried: int, found: Path, else_with: int) -> Any:
+def _end(name: str, tried: int, found: Path, *, ends_with: int) -> Any:
     kinds = sorted(path.stem for path in found.glob("*.txt"))
     sys.stderr.write(f"{name}: {tried} inputs, {time.process_time():.0f} s of the processor's time, ")
     sys.stderr.write(f"found: {', '.join(kinds) or 'nothing'}\n")
     sys.stderr.flush()
-    os._exit(1 if kinds else else_with)  # libFuzzer's loop knows no other way out
+    os._exit(ends_with or bool(kinds))  # libFuzzer's loop knows no other way out
 
 
 if __name__ == "__main__":

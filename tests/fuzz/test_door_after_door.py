@@ -1,5 +1,7 @@
 """How long a door is fuzzed, and in how many processes."""
 
+from pathlib import Path
+
 import pytest
 
 from tests.fuzz import __main__ as fuzz
@@ -32,3 +34,20 @@ def test_a_door_whose_process_is_full_is_fuzzed_on_in_another_for_the_time_that_
 
     assert fuzz.fuzzed("a door", 100, "a folder") == ends_with
     assert (given_s, left) == (asked_s, [])
+
+
+def test_a_fault_that_a_full_process_kept_is_a_fault_in_the_end(
+    monkeypatch: pytest.MonkeyPatch, tmp_path: Path
+) -> None:
+    codes = [FULL, 0]
+
+    def one_process(name: str, seconds: int, folder: str) -> int:
+        kept = Path(folder) / name / "found"
+        kept.mkdir(parents=True, exist_ok=True)
+        (kept / "slow.txt").write_text("3 s")
+        return codes.pop(0)
+
+    monkeypatch.setattr(fuzz, "_fuzzed_once", one_process)
+
+    assert fuzz.fuzzed("a door", 100, str(tmp_path)) == 1
+    assert codes == []

@@ -94,6 +94,65 @@ def test_a_search_without_nodes_says_that_it_is_not_finished_and_its_bound_is_tr
     assert stopped.nodes >= 1
 
 
+def a_harder_one() -> tuple[np.ndarray[tuple[int], np.dtype[np.int64]], list[Row]]:
+    """Sixty columns and 480 rows of five, of which one, or two, may be taken: 2,400 entries, and several nodes."""
+    random = Random(1)
+    rows = [Row(columns=random.sample(range(60), 5), most=random.choice((1, 1, 2))) for _ in range(480)]
+    return worth_of(*(random.randint(50, 60) for _ in range(60))), rows
+
+
+def test_a_search_that_is_stopped_gives_what_it_found_and_a_bound_above_the_best() -> None:
+    worth, rows = a_harder_one()
+    best = IntegerProgram(worth, rows).solve(most_nodes=MOST_NODES, most_s=None)
+    assert best.ones is not None
+    assert (best.bound, best.finished) == (int(worth[best.ones].sum()), True)
+
+    stopped = IntegerProgram(worth, rows).solve(most_nodes=2, most_s=None)
+
+    assert stopped.ones is not None
+    assert stopped.bound is not None
+    assert not stopped.finished
+    taken = np.zeros(60)
+    taken[stopped.ones] = 1
+    assert all(taken[list(row.columns)].sum() <= row.most for row in rows)
+    assert 0 < worth[stopped.ones].sum() < best.bound < stopped.bound
+    # HiGHS ends with the second node; each counts for 1 + 2,400 // 1,000 = 3
+    assert stopped.nodes == 6
+
+
+def test_a_program_that_was_stopped_is_solved_when_asked_again_and_the_same_each_time() -> None:
+    worth, rows = a_harder_one()
+    asked_anew = IntegerProgram(worth, rows).solve(most_nodes=MOST_NODES, most_s=None)
+    program = IntegerProgram(worth, rows)
+
+    assert not program.solve(most_nodes=1, most_s=0.0).finished
+    for _ in range(2):
+        answer = program.solve(most_nodes=MOST_NODES, most_s=None)
+        assert answer.ones is not None
+        assert asked_anew.ones is not None
+        assert answer.ones.tolist() == asked_anew.ones.tolist()
+        assert (answer.bound, answer.nodes, answer.finished) == (asked_anew.bound, asked_anew.nodes, True)
+
+
+@pytest.mark.parametrize(("most_nodes", "most_s"), [(0, None), (-1, None), (MOST_NODES, 0.0), (MOST_NODES, -1.0)])
+def test_less_than_nothing_to_spend_is_nothing_and_nothing_is_known_then(most_nodes: int, most_s: float | None) -> None:
+    answer = IntegerProgram(*a_harder_one()).solve(most_nodes=most_nodes, most_s=most_s)
+
+    # no node was looked at, which counts as one
+    assert (answer.ones, answer.bound, answer.nodes, answer.finished) == (None, None, 3, False)
+
+
+def test_a_node_counts_once_more_for_every_thousand_entries_of_the_rows() -> None:
+    program = IntegerProgram(worth_of(*[1] * 1000), [Row(columns=range(999), most=2000)])
+    counted = [program.solve(most_nodes=MOST_NODES, most_s=None).nodes]
+
+    for width in (1, 999, 1, 1000):  # 1,000 entries, 1,999, 2,000, 3,000
+        program.add([Row(columns=range(width), most=2000)])
+        counted.append(program.solve(most_nodes=MOST_NODES, most_s=None).nodes)
+
+    assert counted == [1, 2, 2, 3, 4]
+
+
 def test_a_search_without_time_says_that_it_is_not_finished() -> None:
     worth, rows = a_hard_one(1, 200)
 
