@@ -17,6 +17,7 @@ from layout.errors import LayoutError
 MOST_CPU_S = 2.0
 MOST_MIB = 300.0
 OURS = "/layout/"
+SLOW, LARGE = "slow", "large"  # kinds of faults
 FULL = 3  # what a process ends with that has no fault and no room for more inputs
 
 
@@ -62,9 +63,9 @@ def fault_of(door: Door, data: bytes, most_cpu_s: float = MOST_CPU_S) -> Fault |
         return Fault(kind=f"{type(error).__name__}-{_place_of(error)}", told="".join(traceback.format_exception(error)))
     took_s, took_mib = time.process_time() - begun_s, memory_mib("VmHWM") - held_mib
     if took_s > most_cpu_s:
-        return Fault(kind="slow", told=f"{took_s:.2f} s of the processor's time, allowed are {most_cpu_s:g}")
+        return Fault(kind=SLOW, told=f"{took_s:.2f} s of the processor's time, allowed are {most_cpu_s:g}")
     if took_mib > MOST_MIB:
-        return Fault(kind="large", told=f"{took_mib:.0f} MiB more than before, allowed are {MOST_MIB:g}")
+        return Fault(kind=LARGE, told=f"{took_mib:.0f} MiB more than before, allowed are {MOST_MIB:g}")
     return None
 
 

@@ -18,7 +18,8 @@ from typing import Any
 
 import atheris  # type: ignore[import-untyped,import-not-found,unused-ignore]  # in an environment of its own
 
-from tests.fuzz.door import FULL, Door, Fault, fault_of, memory_mib
+from tests.fuzz.again import judged_again
+from tests.fuzz.door import FULL, LARGE, SLOW, Door, Fault, fault_of, memory_mib
 
 LONGEST_BYTES = 400_000
 HANGS_AFTER_S = 60  # libFuzzer's own watch, on the clock of the wall: for what never ends
@@ -47,6 +48,8 @@ def main() -> None:
             _end(name, tried, found, ends_with=FULL if is_full else 0)
         tried += 1
         fault = fault_of(door, data)
+        if fault is not None and fault.kind in (SLOW, LARGE):
+            fault = judged_again(name, data)
         if fault is not None:
             _keep(found, door.suffix, data, fault)
 

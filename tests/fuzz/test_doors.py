@@ -2,6 +2,7 @@
 
 import base64
 import random
+import subprocess
 import time
 from pathlib import Path
 
@@ -9,7 +10,8 @@ import pytest
 
 from layout.errors import DocumentError, LayoutError, MidiReadError
 from tests.fuzz import drawing_door
-from tests.fuzz.door import MOST_CPU_S, Door, fault_of
+from tests.fuzz.again import judged_again
+from tests.fuzz.door import LARGE, MOST_CPU_S, SLOW, Door, fault_of
 from tests.fuzz.doors import DOORS
 from tests.fuzz.mutated_tunes import mutated_tune
 from tests.thorough import THOROUGH
@@ -109,7 +111,16 @@ def test_an_answer_that_takes_too_long_or_too_much_is_a_fault() -> None:
         Door(name="x", suffix="", seeds=(), answer=answer, mutate=mutated_tune, errors=()) for answer in (long, large)
     ]
 
-    assert [getattr(fault_of(door, b""), "kind", None) for door in doors] == ["slow", "large"]
+    assert [getattr(fault_of(door, b""), "kind", None) for door in doors] == [SLOW, LARGE]
+
+
+def test_an_input_is_judged_again_in_a_process_of_its_own_by_its_own_door() -> None:
+    settings = DOORS["settings"].seeds[0]
+
+    assert judged_again("settings", settings) is None
+    assert getattr(judged_again("settings", settings, most_cpu_s=0.0), "kind", None) == SLOW
+    with pytest.raises(subprocess.CalledProcessError):
+        judged_again("no such door", settings)
 
 
 @pytest.mark.parametrize("door", DOORS.values(), ids=DOORS)
