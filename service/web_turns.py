@@ -2,16 +2,20 @@
 
 Threads of a process share one interpreter. Where twenty want it, each of the short turns that a request needs is waited
 for twenty times as long, in the event loop and in the threads for health as well; nothing is answered sooner for it.
+
+Who waits for something else than the interpreter should give its turn up. Where it does not, as in a read of the
+database, it counts till LONG_S: of a database that takes w seconds for a request, a process asks for AT_A_TIME / w a
+second, or AT_A_TIME / LONG_S where that is more, up to what its threads can wait for.
 """
 
 import threading
 import time
 from collections import deque
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
 AT_A_TIME = 4  # that work; with more, health and what is at hand take longer under twice the load, measured
-LONG_S = 0.25  # s; after which who works no longer counts: it waits for a database, a slow client or a disk
+LONG_S = 0.1  # s; after which who works no longer counts: it waits for a database, a slow client or a disk
 
 _held = threading.local()
 
@@ -19,8 +23,13 @@ _held = threading.local()
 class Turns:
     """Lets those who come begin one after the other; shared by the threads of a process."""
 
-    def __init__(self) -> None:
-        """Open it."""
+    def __init__(self, clock: Callable[[], float] = time.monotonic) -> None:
+        """Open it.
+
+        Args:
+            clock: Seconds, only ever forward.
+        """
+        self._clock = clock
         self._lock = threading.Lock()
         self._waiting: deque[threading.Event] = deque()
         self._begun_s: dict[threading.Event, float] = {}
@@ -42,7 +51,7 @@ class Turns:
             give_up_turn()
 
     def _let_begin(self) -> None:
-        now_s = time.monotonic()
+        now_s = self._clock()
         while self._waiting and sum(now_s - begun_s < LONG_S for begun_s in self._begun_s.values()) < AT_A_TIME:
             first = self._waiting.popleft()
             self._begun_s[first] = now_s

@@ -30,7 +30,7 @@ from service.limits import Limits
 from service.web_addresses import address_of
 from service.web_gathering import Gathering, Pace, SlowBodyError, Step
 from service.web_refusals import refusal, refusal_of
-from service.web_turns import Turns
+from service.web_turns import Turns, give_up_turn
 
 READING_SHARE = 0.25  # of the threads, for bodies too long to be gathered
 SPARE_THREADS = 2  # beside the others, for those who ask how the service is
@@ -75,6 +75,7 @@ class _PacedBody:
         """
         if self._is_over:
             return b""
+        give_up_turn()  # a slow sender's thread waits, and works no more
         left_s = self._pace.due_s(self._arrived_bytes) - time.monotonic()
         try:
             if left_s <= 0:

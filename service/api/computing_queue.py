@@ -22,9 +22,9 @@ from service.web_turns import give_up_turn
 
 AT_A_TIME = 1  # that compute; with two a page at hand takes twice as long in the 99th percentile, measured
 LONG_S = 1.0  # s of the processor's time; after which who computes no longer counts; nearly all have ended by then
-LEAST_SHARE = (
-    0.1  # of a processor, that counts as computed though less is: who waits for a disk holds nobody up for long
-)
+# Of a processor, that counts as computed though less is: who waits for a database or a disk, which a quote writes to,
+# holds the next up for two seconds at most.
+LEAST_SHARE = 0.5
 LOOK_AGAIN_S = 0.05  # s; at the least, till the next look at who computes
 MOST_AT_A_TIME = 8  # with those that have computed for longer
 RETRY_AFTER_S = 2  # s; in which a process computes some twenty of those that wait, 0.1 s each for a tune of 300 notes

@@ -21,6 +21,7 @@ from sqlalchemy.orm import Session
 from sqlalchemy.pool import ConnectionPoolEntry
 
 from service.store.faults import StoreBusyError, StoreError, StoreFullError
+from service.web_turns import give_up_turn
 
 BUSY_TIMEOUT_S = 30  # s; how long a writer waits its turn
 CONNECT_TIMEOUT_S = 5  # s; a server on the same network answers within milliseconds
@@ -67,6 +68,7 @@ class Store:
             StoreBusyError: Another writes for too long, or the database does not answer.
             StoreFullError: There is no room.
         """
+        give_up_turn()  # for as long as others write
         writer = self.engine.execution_options(writes=True)
         with _told(), Session(writer, expire_on_commit=False) as session, session.begin():
             session.connection()  # the turn begins here, not at the first statement

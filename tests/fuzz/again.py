@@ -12,11 +12,13 @@ from dataclasses import asdict
 from tests.fuzz.door import MOST_CPU_S, Fault, fault_of
 from tests.fuzz.doors import DOORS
 
+GIVE_UP_S = 50.0  # before libFuzzer's own watch ends whoever waits for it
+
 
 def judged_again(name: str, data: bytes, most_cpu_s: float = MOST_CPU_S) -> Fault | None:
     """The fault of an input of a door where nothing watches."""
     command = [sys.executable, "-m", "tests.fuzz.again", name, str(most_cpu_s)]
-    told = json.loads(subprocess.run(command, input=data, capture_output=True, check=True).stdout)
+    told = json.loads(subprocess.run(command, input=data, capture_output=True, check=True, timeout=GIVE_UP_S).stdout)
     return None if told is None else Fault(**told)
 
 

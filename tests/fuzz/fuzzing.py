@@ -2,9 +2,8 @@
 
 `python -m tests.fuzz.fuzzing DOOR SECONDS FOLDER`, in the environment that `sh tests/run fuzz` makes.
 What is found does not stop the run: the first input of each kind of fault is kept in FOLDER/found with its story, and
-the run goes on. The corpus grows in FOLDER/corpus. Ends with FULL where the process has
-grown, by some 15 kB an input, till it must begin anew, from what is in the corpus by then; else with 1 where something
-was found.
+the run goes on. The corpus grows in FOLDER/corpus. Ends with FULL where the process has grown, by some 15 kB an input,
+till it must begin anew, from what is in the corpus by then; else with 1 where something was found.
 """
 
 import logging

@@ -1,14 +1,21 @@
 """Whose turn it is among threads."""
 
+import socket
 import threading
 import time
 from collections.abc import Callable
+from contextlib import closing
+from pathlib import Path
+from typing import Any
 
 import pytest
 
 from service.api.computing_queue import ComputingQueue
 from service.api.waiting_room import WaitingRoom
+from service.web_gathering import Pace
 from service.web_turns import AT_A_TIME, LONG_S, Turns, give_up_turn
+from service.web_worker import GatheringWorker, _PacedBody
+from tests.service.conftest import parts_of
 
 SOON_S = 10.0  # on a busy machine
 A_WHILE_S = 0.1  # in which a thread that may begin has begun
@@ -17,13 +24,12 @@ A_WHILE_S = 0.1  # in which a thread that may begin has begun
 class Threads:
     """Threads that take turns, each of which works until it is let go."""
 
-    def __init__(self, monkeypatch: pytest.MonkeyPatch) -> None:
-        self.turns = Turns()
+    def __init__(self) -> None:
+        self.turns = Turns(lambda: self.at_s)
         self.begun: list[int] = []
         self._let_go: list[threading.Event] = []
         self._running: list[threading.Thread] = []
         self.at_s = 0.0
-        monkeypatch.setattr("service.web_turns.time.monotonic", lambda: self.at_s)
 
     def come(self, many: int, then: Callable[[], object] = lambda: None) -> None:
         for _ in range(many):
@@ -61,8 +67,8 @@ class Threads:
 
 
 @pytest.fixture
-def threads(monkeypatch: pytest.MonkeyPatch) -> Threads:
-    return Threads(monkeypatch)
+def threads() -> Threads:
+    return Threads()
 
 
 def test_so_many_work_at_a_time_and_the_next_begins_when_one_ends_in_the_order_they_came(threads: Threads) -> None:
@@ -108,21 +114,56 @@ def test_who_waits_for_something_else_gives_its_turn_to_the_next(threads: Thread
     threads.end()
 
 
-def test_who_fails_gives_its_turn_to_the_next_as_well() -> None:
+def working(turns: Turns) -> int:
+    """How many have a turn."""
+    return len(turns._begun_s)
+
+
+def test_who_fails_gives_its_turn_back_as_well() -> None:
     turns = Turns()
 
-    for _ in range(2 * AT_A_TIME):
-        with pytest.raises(ZeroDivisionError), turns.turn():
-            raise ZeroDivisionError
+    with pytest.raises(ZeroDivisionError), turns.turn():
+        raise ZeroDivisionError
+
+    assert working(turns) == 0
 
 
-def test_without_a_turn_there_is_none_to_give_up() -> None:
+def test_a_turn_is_given_up_once_and_without_one_there_is_none_to_give_up() -> None:
     give_up_turn()
     turns = Turns()
+
     with turns.turn():
         give_up_turn()
+        assert working(turns) == 0
         give_up_turn()
+    assert working(turns) == 0
+    with turns.turn():
+        assert working(turns) == 1
 
-    for _ in range(2 * AT_A_TIME):
+
+def test_a_web_process_answers_within_a_turn() -> None:
+    worker: Any = GatheringWorker.__new__(GatheringWorker)
+    worker._turns = Turns()
+    seen: list[tuple[object, int]] = []
+    worker.handle = lambda connection: seen.append((connection, working(worker._turns)))
+
+    worker._handle("a connection")
+
+    assert seen == [("a connection", 1)]
+    assert working(worker._turns) == 0
+
+
+def test_who_waits_for_the_rest_of_a_body_or_to_write_gives_its_turn_up(tmp_path: Path) -> None:
+    turns = Turns()
+    ours, theirs = socket.socketpair()
+    with closing(ours), closing(theirs), closing(parts_of(tmp_path).store) as store:
+        theirs.sendall(b"rest")
+        pace = Pace(begun_s=time.monotonic(), pause_s=SOON_S, bytes_per_s=1000)
         with turns.turn():
-            pass
+            assert _PacedBody(ours, pace, 0, 1.0).recv(10) == b"rest"
+            assert working(turns) == 0
+        with turns.turn():
+            with store.reading():
+                assert working(turns) == 1
+            with store.writing():
+                assert working(turns) == 0

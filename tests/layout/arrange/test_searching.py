@@ -65,23 +65,33 @@ def test_the_way_that_keeps_most_wins_and_of_equals_the_nearest_to_as_written(
     assert (found.kept, found.bound, found.stopped) == (max(worths.values()), max(worths.values()), None)
 
 
-def test_of_ways_that_are_solved_only_the_best_is_held_with_its_problems() -> None:
-    worths = {way(semitones): 100 - semitones for semitones in range(MOST_TOLD)}
+@pytest.mark.parametrize(
+    ("ways", "best"),  # of each way its bound and what it keeps
+    [
+        ({way(semitones): (100 - semitones, 100 - semitones) for semitones in range(MOST_TOLD)}, 0),
+        # the second is the same transposition at the slowest speed, so it is solved at once too, and is better
+        ({way(0): (140, 100), way(0, 0.9): (120, 110), way(1): (105, 105)}, 1),
+    ],
+    ids=["falling", "rising"],
+)
+def test_of_ways_that_are_solved_only_the_best_is_held_with_its_problems(
+    ways: dict[Way, tuple[int, int]], best: int
+) -> None:
     posed: list[weakref.ref[Problem]] = []
     held: list[int] = []  # when each is posed
 
     def pose(one: Way) -> list[Problem]:
         held.append(sum(known() is not None for known in posed))
-        problem = problem_with([Asked(at_ms=0, worth=worths[one])])
+        problem = problem_with([Asked(at_ms=0, worth=ways[one][1])])
         posed.append(weakref.ref(problem))
         return [problem]
 
-    found = search(worths, pose, Budget())
+    found = search({one: bound for one, (bound, _) in ways.items()}, pose, Budget())
 
     assert isinstance(found, Found)
-    assert [one.kept for one in found.tried] == [100, 99, 98, 97, 96]
-    assert held == [0, 1, 1, 1, 1]
-    assert [known() for known in posed] == [*found.problems, None, None, None, None]
+    assert found.way == list(ways)[best]
+    assert held == [0] + [1] * (len(ways) - 1)
+    assert [known() is not None for known in posed] == [place == best for place in range(len(ways))]
 
 
 def test_each_transposition_is_told_once_at_its_best_speed_best_first() -> None:

@@ -8,6 +8,7 @@ from ezdxf.audit import Auditor
 from hypothesis import given
 from hypothesis import strategies as st
 
+from layout.write import dxf_entities
 from layout.write.dxf_document import bytes_of, new_document
 from layout.write.dxf_entities import APP_ID, Entities, LibraryEntities, WrittenEntities, entities_of
 from tests.layout.write.test_dxf import reread
@@ -63,6 +64,20 @@ def points(draw: st.DrawFn) -> Added:
 @given(st.lists(st.one_of(polylines(), circles(), arcs(), points()), max_size=5))
 def test_entities_of_every_kind_are_written_as_ezdxf_writes_them(added: list[Added]) -> None:
     assert written_by(WrittenEntities, *added) == written_by(LibraryEntities, *added)
+
+
+def test_many_entities_of_a_make_are_written_some_at_a_time_and_nothing_shows_where(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    monkeypatch.setattr(dxf_entities, "_AT_A_TIME", 3)
+    corners = np.arange(56.0).reshape(7, 4, 2)  # of seven squares, three, three and one at a time
+    many: list[Added] = [
+        lambda entities: entities.add_polylines("SLITS", corners, np.zeros(4), closed=True),
+        lambda entities: entities.add_circles("MARKS", corners[:6, 0], [1.0] * 6),
+        lambda entities: entities.add_points("MARKS", corners[:2, 0]),
+    ]
+
+    assert written_by(WrittenEntities, *many) == written_by(LibraryEntities, *many)
 
 
 def test_no_handle_is_given_twice_and_the_next_one_is_free() -> None:

@@ -159,8 +159,8 @@ def test_who_waits_for_the_processor_is_not_long_by_what_others_compute() -> Non
 
 
 def test_who_waits_for_something_else_is_long_in_the_end() -> None:
-    watch = own_stopwatch()
     begun_s = time.monotonic()
+    watch = own_stopwatch()
     threading.Event().wait(0.1)
     assert watch() >= LEAST_SHARE * 0.1
     assert watch() <= time.monotonic() - begun_s
