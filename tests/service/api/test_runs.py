@@ -127,7 +127,8 @@ def test_a_run_is_answered_before_any_of_its_pairs_is_an_order(shop: Shop) -> No
 
 
 def test_the_same_request_sent_twice_is_one_run(shop: Shop) -> None:
-    first, second = (shop.ask(archive_of(a=TUNE), key='"r-1"') for _ in range(2))
+    archive = archive_of(a=TUNE)  # made once: it holds the moment
+    first, second = (shop.ask(archive, key='"r-1"') for _ in range(2))
 
     assert first.data == second.data
     assert shop.run_count() == 1
