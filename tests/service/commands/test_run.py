@@ -7,7 +7,7 @@ import signal
 import subprocess
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
@@ -334,6 +334,15 @@ def discs_in(out: Path) -> dict[str, bytes]:
     return {name: content for name, content in files_in(out).items() if name != "run.json"}
 
 
+@pytest.fixture
+def hears_ctrl_c() -> Iterator[None]:
+    """Processes begun meanwhile hear it, though the tests themselves ignore it, as all do that a shell begins with &."""
+    before = signal.signal(signal.SIGINT, signal.default_int_handler)
+    yield
+    signal.signal(signal.SIGINT, before)
+
+
+@pytest.mark.usefixtures("hears_ctrl_c")
 def test_ctrl_c_leaves_whole_folders_and_says_how_to_go_on(tunes: Path, tmp_path: Path) -> None:
     many(tunes, 60)  # far more than are done by the time that a busy machine sees three
     out = tmp_path / "discs"
