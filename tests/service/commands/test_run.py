@@ -336,7 +336,7 @@ def discs_in(out: Path) -> dict[str, bytes]:
 
 @pytest.fixture
 def hears_ctrl_c() -> Iterator[None]:
-    """Processes begun meanwhile hear it, though the tests themselves ignore it, as all do that a shell begins with &."""
+    """Processes begun meanwhile hear it, though the tests themselves ignore it, as what a shell begins with & does."""
     before = signal.signal(signal.SIGINT, signal.default_int_handler)
     yield
     signal.signal(signal.SIGINT, before)
