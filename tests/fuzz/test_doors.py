@@ -3,6 +3,7 @@
 import base64
 import random
 import subprocess
+import sys
 import time
 from pathlib import Path
 
@@ -121,6 +122,17 @@ def test_an_input_is_judged_again_in_a_process_of_its_own_by_its_own_door() -> N
     assert getattr(judged_again("settings", settings, most_cpu_s=0.0), "kind", None) == SLOW
     with pytest.raises(subprocess.CalledProcessError):
         judged_again("no such door", settings)
+
+
+def test_what_fuzzing_imports_first_leaves_the_doors_to_be_watched_by_atheris() -> None:
+    program = (
+        "import sys, tests.fuzz.again, tests.fuzz.door\n"
+        "print([name for name in sys.modules if name.startswith('layout.') and name != 'layout.errors'])\n"
+    )
+
+    ended = subprocess.run([sys.executable, "-c", program], capture_output=True, text=True, check=True)
+
+    assert ended.stdout == "[]\n"
 
 
 @pytest.mark.parametrize("door", DOORS.values(), ids=DOORS)
