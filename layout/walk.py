@@ -3,8 +3,6 @@
 read → arrange → place → play → check → report → cut → making → write; and, from a drawing, read back → play → check.
 """
 
-import hashlib
-import json
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
@@ -22,6 +20,7 @@ from layout.cut.wording import Words
 from layout.documents import Cutter, Movement, Settings
 from layout.errors import DocumentError, Problem
 from layout.file_names import files_given
+from layout.fingerprint import fingerprint_of
 from layout.limits import limits_told
 from layout.making import Making, making_of
 from layout.mechanics.projection import pattern_of
@@ -36,7 +35,6 @@ from layout.read.limits import LIMITS
 from layout.read.score import Score
 from layout.read_back import read_back
 from layout.report import report_on
-from layout.version import ENGINE_VERSION
 from layout.write import (
     write_dxf,
     write_hits,
@@ -91,29 +89,6 @@ class CheckedDrawing:
     def good_to_cut(self) -> bool:
         """Whether no error-level finding stands."""
         return not stands(self.findings)
-
-
-def fingerprint_of(tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1) -> str:
-    """Sixteen hex digits that name these inputs and this engine: the id of their layout.
-
-    Args:
-        tune: The MIDI file.
-        movement: The movement.
-        cutter: The cutter.
-        settings: What the maker asks for.
-        number: Which disc of settings.discs, from 1.
-    """
-    parts: dict[str, object] = {
-        "engine": ENGINE_VERSION,
-        "tune": hashlib.sha256(tune).hexdigest(),
-        "movement": movement.model_dump(mode="json"),
-        "stated": {pointer: worth.model_dump(mode="json") for pointer, worth in movement.stated.items()},
-        "cutter": cutter.model_dump(mode="json"),
-        "settings": settings.model_dump(mode="json"),
-    }
-    if settings.discs > 1:
-        parts["disc_number"] = number
-    return hashlib.sha256(json.dumps(parts, sort_keys=True).encode()).hexdigest()[:16]
 
 
 def check_tune(tune: bytes, settings: Settings) -> None:

@@ -130,8 +130,10 @@ class TheWalk:
     def fingerprint_of(
         self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1
     ) -> str:
-        """As `layout.walk` does."""
-        return str(_walk().fingerprint_of(tune, movement, cutter, settings, number))
+        """As `layout.fingerprint` does."""
+        from layout.fingerprint import fingerprint_of  # noqa: PLC0415 -- with the documents, which a command may not need
+
+        return fingerprint_of(tune, movement, cutter, settings, number)
 
     def files_of(self, laid_out: Any, *, not_good: str | None = None) -> dict[str, bytes]:
         """As `layout.walk` does."""

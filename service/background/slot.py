@@ -9,10 +9,11 @@ from typing import Any
 
 from service.background.holding import Held, Holding
 from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest
-from service.background.planning_child import ChildEndedError, ChildTooLongError, ChildUnwantedError, PlanningChild
+from service.background.planning_child import PlanningChild
 from service.background.queue import Queue, QueueAwayError
 from service.background.stage_times import note_stage_times
 from service.background.sweeping import Sweep
+from service.children.child_process import ChildEndedError, ChildTooLongError, ChildUnwantedError
 from service.orders import taking
 from service.orders.taking import Taken
 from service.settings import WorkSettings

@@ -14,16 +14,12 @@ import pytest
 from layout.documents import read_settings, shipped_cutter, shipped_movement
 from service.background import child as child_module
 from service.background import planning_child
-from service.background.frames import read_frame, write_frame
 from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest, answer_from_json, as_json
-from service.background.planning_child import (
-    CHILD,
-    ChildEndedError,
-    ChildTooLongError,
-    ChildUnwantedError,
-    PlanningChild,
-)
+from service.background.planning_child import CHILD, PlanningChild
 from service.background.stage_watch import StageWatch, TimedKeeper, TimedPlanner
+from service.children import child_process
+from service.children.child_process import ChildEndedError, ChildTooLongError, ChildUnwantedError
+from service.children.frames import read_frame, write_frame
 from service.orders.test_tunes import Deed, state_tunes
 from service.parts import Parts
 from service.store.faults import StoreBusyError
@@ -306,7 +302,7 @@ def test_a_child_whose_store_does_not_answer_says_that_the_order_can_be_planned_
 def test_a_child_that_closes_its_pipe_and_lives_on_is_gone(setup: ChildSetup, monkeypatch: pytest.MonkeyPatch) -> None:
     lines = "import os, time; os.close(0); os.close(1); time.sleep(60)"
     monkeypatch.setattr(planning_child, "CHILD", (sys.executable, "-c", lines))
-    monkeypatch.setattr(planning_child, "ENDING_S", 0.2)
+    monkeypatch.setattr(child_process, "ENDING_S", 0.2)
 
     with pytest.raises(ChildEndedError, match=r"^its process ended with code 0$"):
         PlanningChild(setup)

@@ -11,10 +11,10 @@ import pytest
 from service.background import slot
 from service.background.holding import Holding
 from service.background.messages import ChildAnswer, ChildSetup, Kind, PlanRequest
-from service.background.planning_child import ChildEndedError
 from service.background.queue import Queue
 from service.background.slot import Shared, Slot
 from service.background.sweeping import Sweep
+from service.children.child_process import ChildEndedError
 from service.orders import taking
 from service.orders.planned import OrderInputs
 from service.orders.planning import plan_order

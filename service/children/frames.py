@@ -1,4 +1,4 @@
-"""Messages between a worker and its child: each a length in eight bytes, and then its bytes."""
+"""Messages between a process and its child: each a length in eight bytes, and then its bytes."""
 
 import os
 import selectors

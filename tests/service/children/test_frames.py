@@ -9,7 +9,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from service.background.frames import LENGTH, MOST_BYTES, BrokenFrameError, FrameReader, read_frame, write_frame
+from service.children.frames import LENGTH, MOST_BYTES, BrokenFrameError, FrameReader, read_frame, write_frame
 
 
 @pytest.fixture
