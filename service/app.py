@@ -11,6 +11,7 @@ from prometheus_client import CollectorRegistry
 from service.access.rates import Rates
 from service.api.about import about_routes
 from service.api.answers import with_safe_head
+from service.api.apart import PlannedApart
 from service.api.asking import guard
 from service.api.catalogue import catalogue_routes
 from service.api.computing_queue import open_computing_queue
@@ -20,6 +21,7 @@ from service.api.exports import export_routes
 from service.api.failures import answer_failures
 from service.api.hearing_shelf import HearingShelf
 from service.api.hooks import hook_routes
+from service.api.in_turn import InTurn
 from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
 from service.api.layouts import layout_routes
@@ -40,6 +42,7 @@ from service.api.sign_in import sign_in_routes
 from service.api.test_tunes import test_tune_routes
 from service.api.trial_pieces import trial_piece_routes
 from service.background.queue import Queue
+from service.computing.children import Children
 from service.logs import is_logging, start_logging
 from service.orders.proofs import PURPOSE, ProofLinks
 from service.pages.disc import disc_routes
@@ -66,12 +69,15 @@ class _App(Flask):
         return func
 
 
-def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner | None = None) -> Flask:
+def create_app(
+    settings: ServiceSettings | None = None, *, planner: AnyPlanner | None = None, children: Children | None = None
+) -> Flask:
     """The service as a WSGI app. Made after a process has forked, never before: it opens the database.
 
     Args:
         settings: None for those that the environment asks for.
         planner: The computation; None for the walk.
+        children: They compute, instead of a planner in this process.
 
     Raises:
         SettingsError: The environment asks for something the service cannot do.
@@ -90,8 +96,12 @@ def create_app(settings: ServiceSettings | None = None, *, planner: AnyPlanner |
     meter(app, counted)
     answer_failures(app, settings.limits)
     guard(app, parts, Rates(settings.access))
-    planner = planner or TheWalk()
-    desk = LayoutDesk(planner, LayoutCache(settings), open_computing_queue(app, None), settings.limits)
+    computing_queue = open_computing_queue(app, None)
+    if children is None:
+        planner = InTurn(planner or TheWalk(), computing_queue)
+    else:
+        planner = PlannedApart(children, computing_queue, settings.work.plan_within_s)
+    desk = LayoutDesk(planner, LayoutCache(settings), computing_queue, settings.limits)
     shelf = HearingShelf(settings)
     for routes in (*_routes_of_layouts(planner, desk, parts, shelf), *_routes_of_orders(parts, queue, shelf)):
         app.register_blueprint(routes)

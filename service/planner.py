@@ -14,9 +14,12 @@ if TYPE_CHECKING:
     from layout.documents import Cutter, Movement, Settings
     from layout.place.disc import Disc
     from layout.play.plucks import Plucks
-    from layout.read.score import Score
 
 Clock = Callable[[], float]  # seconds, only ever forward
+
+
+class AnotherDiscError(Exception):
+    """A disc was laid out again for its files, and came to another, as a search may that time stopped."""
 
 
 class Layout(Protocol):
@@ -37,10 +40,6 @@ class Layout(Protocol):
     @property
     def disc_count(self) -> int:
         """How many discs the tune is cut into."""
-
-    @property
-    def score(self) -> Score:
-        """The notes read, with what was odd about the file."""
 
     @property
     def good_to_cut(self) -> bool:
@@ -98,10 +97,18 @@ class Planner(Protocol[LayoutT]):
         """The id of a layout before it is computed, by the number of its disc, from 1."""
 
     def files_of(self, laid_out: LayoutT, *, not_good: str | None = None) -> dict[str, bytes]:
-        """The files by name, without the cutting files where they are kept back."""
+        """The files by name, without the cutting files where they are kept back.
+
+        Raises:
+            AnotherDiscError: It had to be laid out again, and came to another disc.
+        """
 
     def told_of(self, laid_out: LayoutT, *, not_good: str | None = None) -> dict[str, bytes]:
-        """Those of the same files that need no plan of how it is cut."""
+        """Those of the same files that need no plan of how it is cut.
+
+        Raises:
+            AnotherDiscError: As for `files_of`.
+        """
 
     def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
         """What the disc of a drawing plays and what is wrong with it."""

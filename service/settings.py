@@ -127,10 +127,16 @@ class WorkSettings:
         "DISCWRIGHT_LEASE_S", whole_number(2, 3600), "seconds that a worker holds an order without renewing", default=30
     )
     plan_within_s: int = variable(
-        "DISCWRIGHT_PLAN_WITHIN_S", whole_number(1, 86_400), "seconds that planning one order may take", default=300
+        "DISCWRIGHT_PLAN_WITHIN_S",
+        whole_number(1, 86_400),
+        "seconds that planning one order or laying out one tune may take",
+        default=300,
     )
     plan_memory_mib: int = variable(
-        "DISCWRIGHT_PLAN_MEMORY_MIB", whole_number(200, 1_000_000), "MiB that planning one order may take", default=2000
+        "DISCWRIGHT_PLAN_MEMORY_MIB",
+        whole_number(200, 1_000_000),
+        "MiB that planning one order or laying out one tune may take",
+        default=2000,
     )
     most_attempts: int = variable(
         "DISCWRIGHT_ATTEMPTS", whole_number(1, 20), "times that an order may kill its worker before it fails", default=3

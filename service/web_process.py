@@ -15,14 +15,14 @@ from typing import Any
 
 from gunicorn.glogging import Logger
 
-from service.importing import ONE_AT_A_TIME
 from service.logs import start_logging
 from service.settings import settings_from
 from service.web_worker import GatheringWorker
 
 COUNTS_OF_PROCESSES = "PROMETHEUS_MULTIPROC_DIR"
 GATE = "DISCWRIGHT_GATE"  # as `service.commands.web` has it
-COMPUTATION = ("layout.walk", "layout.sheet_walk", "layout.trial_walk")
+CHILDREN = "discwright computing children"
+WALK = "layout.walk"
 WAITING_SHARE = 0.25  # of the threads, for requests that wait and streams of events
 COMPUTING_SHARE = 0.6  # of the threads, for requests that compute or wait for it; the rest is for all others
 WARM_AFTER_S = 0.5  # s; first the requests that waited for the start
@@ -51,7 +51,7 @@ class OneLog(Logger):  # type: ignore[misc]
 
 
 # Names that gunicorn knows.
-wsgi_app = "service.app:create_app()"
+wsgi_app = "service.web_process:app_with_children()"
 worker_class = GatheringWorker
 logger_class = OneLog
 control_socket_disable = True
@@ -70,8 +70,21 @@ def on_starting(server: Any) -> None:
         os.close(int(gate))
 
 
+def app_with_children() -> Any:
+    """The app of a web process, whose layouts are computed in children of it. The first gets warm in good time."""
+    from service.app import create_app  # noqa: PLC0415 -- the master has imported it, and no one else need to
+    from service.computing.children import Children  # noqa: PLC0415 -- as above
+    from service.computing.messages import ChildSetup  # noqa: PLC0415 -- as above
+
+    settings = settings_from(os.environ)
+    children = Children(ChildSetup(planner=WALK, memory_mib=settings.work.plan_memory_mib))
+    app = create_app(settings, children=children)
+    app.extensions[CHILDREN] = children
+    return app
+
+
 def post_worker_init(worker: Any) -> None:
-    """Tell the app when its process stops and how many may wait, and import the computation before the first tune."""
+    """Tell the app when its process stops and how many may wait, and have a child warm before the first tune."""
     from service.api.computing_queue import (  # noqa: PLC0415 -- the app is imported by now, and not before
         open_computing_queue,
     )
@@ -81,7 +94,7 @@ def post_worker_init(worker: Any) -> None:
     tell_stopping(worker.wsgi, lambda: not worker.alive)
     open_waiting_room(worker.wsgi, int(worker.cfg.threads * WAITING_SHARE))
     open_computing_queue(worker.wsgi, max(1, int(worker.cfg.threads * COMPUTING_SHARE)))
-    warming = threading.Timer(WARM_AFTER_S, _warm)
+    warming = threading.Timer(WARM_AFTER_S, _warm, (worker.wsgi.extensions[CHILDREN],))
     warming.daemon = True
     warming.start()
 
@@ -91,9 +104,6 @@ def on_exit(server: Any) -> None:
     shutil.rmtree(os.environ[COUNTS_OF_PROCESSES], ignore_errors=True)
 
 
-def _warm() -> None:
-    for name in COMPUTATION:
-        with ONE_AT_A_TIME:
-            importlib.import_module(name)
-    # What is imported stays: looking for garbage among it takes a fifth of the time of a layout.
-    gc.freeze()
+def _warm(children: Any) -> None:
+    children.warm()
+    gc.freeze()  # what is imported stays: it need not be looked at for garbage

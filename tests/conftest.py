@@ -11,7 +11,8 @@ from hypothesis import settings
 from tests.thorough import MUTANTS, tried
 
 HERE = Path(__file__).parent
-MOSTLY_WAITING = (HERE / "faults", HERE / "service", HERE / "service" / "background")  # tests of whole processes
+# Tests of whole processes.
+MOSTLY_WAITING = (HERE / "faults", HERE / "service", HERE / "service" / "background", HERE / "service" / "computing")
 
 # No test fails for being slow on a busy machine.
 settings.register_profile("untimed", deadline=None, max_examples=tried(100), derandomize=MUTANTS)

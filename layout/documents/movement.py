@@ -336,6 +336,19 @@ def read_movement(text: str | bytes) -> Movement:
     return movement
 
 
+def values_of_movement(movement: Movement) -> dict[str, Json]:
+    """A movement as plain JSON values, with the worth of its numbers: all that `movement_from_values` needs."""
+    stated = {pointer: worth.model_dump(mode="json") for pointer, worth in movement.stated.items()}
+    return {"movement": movement.model_dump(mode="json"), "stated": stated}
+
+
+def movement_from_values(values: dict[str, Json]) -> Movement:
+    """The movement that `values_of_movement` told."""
+    movement = Movement.model_validate(values["movement"])
+    movement._stated.update({pointer: Stated.model_validate(worth) for pointer, worth in values["stated"].items()})
+    return movement
+
+
 def _as_spread(error: DocumentError) -> DocumentError:
     """The error with its places as they are where tracks are spread: none of them stands by itself."""
     problems = tuple(

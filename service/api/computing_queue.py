@@ -79,8 +79,11 @@ class ComputingQueue:
                 self._taken_count -= 1
 
     @contextmanager
-    def admitted(self) -> Iterator[None]:
+    def admitted(self) -> Iterator[Callable[[Callable[[], float]], None]]:
         """Compute in here; entered when it is one's turn. Not to be entered again from within.
+
+        Gives what may be called with another stopwatch, where another process computes meanwhile: one that tells, in
+        any thread, the seconds that it has computed.
 
         Raises:
             ProblemError: All places are taken, and one is not held already.
@@ -95,8 +98,13 @@ class ComputingQueue:
                     self._waiting.remove(mine)
                     self._changed.notify_all()
                 self._computed_s[mine] = self._stopwatch()
+
+            def measure_by(computed_s: Callable[[], float]) -> None:
+                with self._changed:
+                    self._computed_s[mine] = computed_s
+
             try:
-                yield
+                yield measure_by
             finally:
                 with self._changed:
                     del self._computed_s[mine]

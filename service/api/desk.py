@@ -11,22 +11,23 @@ import logging
 import threading
 import time
 from collections.abc import Callable, Mapping
+from contextlib import suppress
 from dataclasses import replace
-from itertools import accumulate, chain, islice
+from itertools import chain
 
 from layout.file_names import files_given
 from service.api.computing_queue import ComputingQueue
 from service.api.layout_cache import KeptLayout, LayoutCache
 from service.api.problems import ProblemError
+from service.computing.at_hand import SetsAtHand
 from service.documents import Inputs
 from service.limits import Limits
-from service.planner import AnyPlanner, Layout
+from service.planner import AnotherDiscError, AnyPlanner, Layout
 
 log = logging.getLogger("discwright")
 
 JUDGED = {"findings", "good_to_cut"}  # of layout.json: what is said of the disc, and not what it is
 LOCKS = 256  # many more than a process has threads, so that hardly two wait who want different discs
-AT_HAND_DISCS = 16  # discs, or the last set alone where it has more; one takes 200 kB to 700 kB of memory, measured
 
 
 class LayoutDesk:
@@ -43,9 +44,9 @@ class LayoutDesk:
         """Open the desk.
 
         Args:
-            planner: Computes layouts.
+            planner: Computes layouts, each in its turn.
             cache: Keeps them.
-            queue: Where who computes waits for a turn.
+            queue: Where who computes takes a place, before any lock that is held while one computes.
             limits: Read for the longest search.
             clock: Seconds, only ever forward.
         """
@@ -54,7 +55,7 @@ class LayoutDesk:
         self._most_s = (limits or Limits()).search_s
         self._clock = clock
         self._cache = cache
-        self._at_hand: tuple[tuple[Layout, ...], ...] = ()  # so that files of what was just made are soon there
+        self._at_hand: SetsAtHand[Layout] = SetsAtHand()  # so that files of what was just made are soon there
         self._making = tuple(threading.Lock() for _ in range(LOCKS))  # so that two who ask at a time make them once
         # Of discs that an earlier version kept, not searched for twice; no more than that version left in the cache.
         self._others: dict[str, ProblemError] = {}
@@ -177,7 +178,7 @@ class LayoutDesk:
         )
 
     def _at_hand_of(self, kept: KeptLayout) -> tuple[Layout, ...]:
-        sets = (discs for discs in self._at_hand if any(_names(one, kept) for one in discs))
+        sets = (discs for discs in self._at_hand.sets if any(_names(one, kept) for one in discs))
         return next(sets, ())
 
     def _lock_of(self, kept: KeptLayout) -> threading.Lock:
@@ -211,7 +212,7 @@ class LayoutDesk:
         if reason is None or kept.good_to_cut:
             return kept.files
         with self._queue.place():
-            return self._planner.told_of(self._laid_out(kept), not_good=reason)
+            return self._made(kept, lambda laid_out: self._planner.told_of(laid_out, not_good=reason))
 
     def files(self, kept: KeptLayout, reason: str | None) -> Mapping[str, bytes]:
         """All files that are given, made where they are not kept.
@@ -225,23 +226,29 @@ class LayoutDesk:
         """
         if reason is not None and not kept.good_to_cut:
             with self._queue.place():
-                return self._files_of(self._laid_out(kept), reason)
+                return self._made(kept, lambda laid_out: self._planner.files_of(laid_out, not_good=reason))
         if kept.has_all_files:
             return kept.files
         with self._queue.place(), self._lock_of(kept):
             other = self._cache.get(kept.fingerprint, kept.owner_id)  # whoever was before us may have made them
             if other is not None and other.has_all_files and other.inputs == kept.inputs:
                 return other.files
-            files = self._files_of(self._laid_out(kept))
+            files = self._made(kept, self._planner.files_of)
             self._cache.put(replace(kept, files=files))
             return files
 
-    def _laid_out(self, kept: KeptLayout) -> Layout:
-        """A kept layout with all that is known of it: at hand, or laid out again."""
-        at_hand = [laid_out for laid_out in chain.from_iterable(self._at_hand) if _names(laid_out, kept)]
-        for laid_out in at_hand or self._compute(kept.inputs):  # another disc is not searched for twice
-            if _names(laid_out, kept) and self._planner.told_of(laid_out)["layout.json"] == kept.files["layout.json"]:
-                return laid_out
+    def _made(self, kept: KeptLayout, make: Callable[[Layout], Mapping[str, bytes]]) -> Mapping[str, bytes]:
+        """What is made of a kept layout with all that is known of it: at hand, or laid out again.
+
+        Raises:
+            ProblemError: It was laid out again, and came to another disc.
+        """
+        at_hand = [laid_out for laid_out in chain.from_iterable(self._at_hand.sets) if _names(laid_out, kept)]
+        with suppress(AnotherDiscError):
+            for laid_out in at_hand or self._compute(kept.inputs):  # another disc is not searched for twice
+                told = self._planner.told_of(laid_out)
+                if _names(laid_out, kept) and told["layout.json"] == kept.files["layout.json"]:
+                    return make(laid_out)
         if kept.has_all_files:
             raise _outdated(
                 kept,
@@ -266,28 +273,17 @@ class LayoutDesk:
             disc_count=laid_out.disc_count,
             good_to_cut=laid_out.good_to_cut,
             inputs=inputs,
-            files=self._files_of(laid_out) if may_differ else self._planner.told_of(laid_out),
+            files=self._planner.files_of(laid_out) if may_differ else self._planner.told_of(laid_out),
             owner_id=owner_id,
         )
-
-    def _files_of(self, laid_out: Layout, reason: str | None = None) -> Mapping[str, bytes]:
-        with self._queue.admitted():
-            files: Mapping[str, bytes] = self._planner.files_of(laid_out, not_good=reason)
-        return files
 
     def _compute(self, inputs: Inputs) -> tuple[Layout, ...]:
         read = inputs.read()
         documents = (read.movement, read.cutter, read.settings)
-        with self._queue.admitted():  # waiting takes nothing of the time of the search
-            computed: tuple[Layout, ...] = self._planner.lay_out_discs(
-                inputs.tune, *documents, self._clock, most_s=self._most_s
-            )
-        before = self._at_hand
-        counts = accumulate(len(discs) for discs in (computed, *before))
-        fitting = [
-            discs for discs, count in zip(before, islice(counts, 1, None), strict=True) if count <= AT_HAND_DISCS
-        ]
-        self._at_hand = (computed, *fitting)  # one that another thread adds meanwhile may be lost
+        computed: tuple[Layout, ...] = self._planner.lay_out_discs(
+            inputs.tune, *documents, self._clock, most_s=self._most_s
+        )
+        self._at_hand.add(computed[0].fingerprint, computed)
         return computed
 
     def _cut_short(self, inputs: Inputs, computed: tuple[Layout, ...]) -> bool:

@@ -70,6 +70,13 @@ KINDS = (
         "posted as the part cutter of a multipart body.",
     ),
     ProblemKind(
+        name="too-much-to-compute",
+        status=422,
+        title="Laying this tune out takes more than the service gives to one",
+        what_to_do="detail says of what. Shorten the tune, ask for a passage of it, or split it over more discs with "
+        "the setting discs; the shop may give more: DISCWRIGHT_PLAN_MEMORY_MIB and DISCWRIGHT_PLAN_WITHIN_S.",
+    ),
+    ProblemKind(
         name="layout-unknown",
         status=404,
         title="No layout is kept under this fingerprint",

@@ -25,7 +25,7 @@ def quote_routes(planner: AnyPlanner, parts: Parts) -> Blueprint:
     """The routes of quotes.
 
     Args:
-        planner: The computation; a quote is worked out while it is asked for.
+        planner: The computation, in turn; a quote is worked out while it is asked for.
         parts: What quotes are kept in.
     """
     routes = Blueprint("quotes", __name__, url_prefix="/v1/quotes")
@@ -68,7 +68,7 @@ def _quoted(planner: AnyPlanner, parts: Parts, asker: Asker, asked: Request) -> 
     days = parts.settings.work.quote_days
 
     def work(also: AlsoQuote) -> QuoteView:
-        with computing_queue().admitted():
+        with computing_queue().place():
             return quote_order(parts.store, planner, asker, order, also, days=days)
 
     return once(parts, asked, asker, brought, work, _given)

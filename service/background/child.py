@@ -36,11 +36,13 @@ from service.store.holds import FileKeeper
 from service.store.store import Store
 
 PR_SET_PDEATHSIG = 1  # linux/prctl.h
+GIVING_WAY = 10  # of nice(2): an order waits, and a person who looks at a layout does not
 
 
 def main() -> int:
     """Serve orders until the worker has gone."""
     orders, answers = own_pipes()
+    os.nice(GIVING_WAY)
     told = read_frame(orders)
     if told is None:
         return 0

@@ -41,7 +41,8 @@ def lay_out_discs(
     asked = re.search(rb"do:([a-z-]+) ?([\d.]*);", tune)
     if asked is not None:
         _DEEDS[asked[1]](asked[2])
-    return _PLANNER.lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
+    laid_out = _PLANNER.lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
+    return tuple(replace(one, stopped="time") for one in laid_out) if b"do:stop;" in tune else laid_out
 
 
 def _fill_memory(_: bytes) -> None:
@@ -83,4 +84,5 @@ _DEEDS: dict[bytes, Any] = {
     b"print": _print,
     b"grow": _grow,
     b"divide": _divide,
+    b"stop": lambda _: None,  # the search, as time does; told of what is laid out
 }

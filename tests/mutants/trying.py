@@ -7,7 +7,7 @@ from signal import SIGKILL, SIGXCPU
 from time import process_time
 
 from mutmut.mutation.trampoline import set_mutant_under_test
-from mutmut.runners.harness import PytestRunner
+from mutmut.runners.harness import BadTestExecutionCommandsException, PytestRunner
 from mutmut.state import state
 from mutmut.utils.format_utils import mangled_name_from_mutant_name
 
@@ -86,7 +86,11 @@ def run_in_child(mutant: str, tests: list[str], runner: PytestRunner) -> int:
     os.dup2(nowhere, 1)
     os.dup2(nowhere, 2)
     set_mutant_under_test(mutant)
-    return runner.run_tests(mutant_name=mutant, tests=tests)
+    try:
+        return runner.run_tests(mutant_name=mutant, tests=tests)
+    except BadTestExecutionCommandsException:
+        # A case is named after what comes out otherwise: all cases of these tests are run, whatever their names.
+        return runner.run_tests(mutant_name=mutant, tests=sorted({test.partition("[")[0] for test in tests}))
 
 
 def outcome_of(exit_code: int) -> str:

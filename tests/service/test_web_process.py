@@ -19,9 +19,10 @@ def test_so_many_of_the_threads_may_compute_and_so_many_wait(
     monkeypatch: pytest.MonkeyPatch, threads: int, compute: int, wait: int
 ) -> None:
     warmed: list[object] = []
-    monkeypatch.setattr(web_process, "_warm", lambda: warmed.append(None))
+    monkeypatch.setattr(web_process, "_warm", warmed.append)
     monkeypatch.setattr(web_process, "WARM_AFTER_S", 0.0)
     app = Flask("a shop")
+    app.extensions[web_process.CHILDREN] = "its children"
 
     web_process.post_worker_init(SimpleNamespace(wsgi=app, cfg=SimpleNamespace(threads=threads), alive=True))
 
@@ -31,4 +32,4 @@ def test_so_many_of_the_threads_may_compute_and_so_many_wait(
     for thread in threading.enumerate():
         if isinstance(thread, threading.Timer):
             thread.join(10)
-    assert warmed == [None]
+    assert warmed == ["its children"]

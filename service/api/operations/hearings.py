@@ -75,7 +75,7 @@ def _plucks(whose: str, tag: str, summary: str, unknown: tuple[str, ...], exampl
 
 _HEADER_ALONE = {"Range": "bytes=0-43"}
 _A_DISC = {"revision": 1, "disc": 1}
-_OF_LAYOUTS = ("layout-unknown", "layout-outdated")
+_OF_LAYOUTS = ("layout-unknown", "layout-outdated", "too-much-to-compute")
 _OF_ORDERS, _OF_PROOFS = ("order-unknown",), ("proof-refused", "order-unknown")
 
 LAYOUT_SOUND = _sound(

@@ -78,6 +78,7 @@ MAKE = Operation(
         *("tune-missing", "midi-unreadable", "document-invalid", "rulings-contradict", "not-good-to-cut"),
         *("movement-unknown", "cutter-unknown", "parameter-missing", "multipart-unreadable", "not-acceptable"),
         "layout-outdated",
+        "too-much-to-compute",
     ),
     examples=(
         Example(status=201, query={"movement": "fernhollow-31"}, media_type=MIDI, body=SMALL_TUNE),
@@ -106,7 +107,7 @@ TELL = Operation(
         Answer(status=200, meaning="The layout.", contents={JSON_MEDIA_TYPE: LayoutAnswer}, headers=(ETAG,)),
         NOT_MODIFIED,
     ),
-    problems=("layout-unknown", "layout-outdated"),
+    problems=("layout-unknown", "layout-outdated", "too-much-to-compute"),
     examples=(Example(status=200, given="a layout"),),
 )
 _FILES = {media_type.partition(";")[0]: None for media_type in MEDIA_TYPES.values()}
@@ -125,7 +126,7 @@ FILE = Operation(
         ),
         NOT_MODIFIED,
     ),
-    problems=("layout-unknown", "layout-outdated", "not-good-to-cut"),
+    problems=("layout-unknown", "layout-outdated", "not-good-to-cut", "too-much-to-compute"),
     examples=(Example(status=200, given="a layout", path={"file_name": "disc.svg"}),),
 )
 SETTINGS = Operation(
@@ -171,7 +172,10 @@ AGAIN = Operation(
             headers=(ETAG, LOCATION, ITEMS),
         ),
     ),
-    problems=("layout-unknown", "layout-outdated", "document-invalid", "rulings-contradict", "midi-unreadable"),
+    problems=(
+        *("layout-unknown", "layout-outdated", "document-invalid", "rulings-contradict", "midi-unreadable"),
+        "too-much-to-compute",
+    ),
     examples=(
         Example(
             status=201,

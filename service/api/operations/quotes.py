@@ -17,7 +17,7 @@ MAKE = replace(
     description="The same form as that of an order, but for quote and repeat_of. The price follows from the rates that "
     "the cutter states, and holds until valid_until for an order of the same input and quantity that names the quote.",
     answers=(told(QuoteAnswer, "The price.", LOCATION, CONTENT_LOCATION, status=201),),
-    problems=(*PLACE.problems, "not-priced"),
+    problems=(*PLACE.problems, "not-priced", "too-much-to-compute"),
     examples=(
         Example(
             status=201,

@@ -14,7 +14,7 @@ import pytest
 
 from layout import walk
 from layout.documents import Settings, shipped_cutter, shipped_movement
-from service.api.desk import AT_HAND_DISCS
+from service.computing.at_hand import AT_HAND_DISCS
 from service.limits import Limits
 from tests.service import shop
 from tests.service.api.conftest import ClientFor
