@@ -25,6 +25,7 @@ from service.planner import AnotherDiscError
 from service.settings import AccessSettings, ServiceSettings, WorkSettings, settings_from
 from tests.faults.ordering import tune_called
 from tests.fuzz.test_random_discs import faulty
+from tests.service.api.guarded import problem_of
 from tests.service.conftest import begin_data, environment_of
 from tests.service.fakes import MANY
 from tests.service.shop import TUNE
@@ -121,8 +122,10 @@ def test_a_tune_that_ends_what_computes_it_is_refused_and_the_next_is_laid_out(
     refused = post(failing, tune_called(f"do:{deed};"))
     after = post(failing, tune_called(f"after {deed}"))
 
-    assert (refused.status_code, refused.json["type"]) == (422, "/problems/too-much-to-compute")
-    assert refused.json["detail"] == f"laying this tune out {why}; shorten it, or split it over more discs"
+    assert (
+        problem_of(refused, "too-much-to-compute")["detail"]
+        == f"laying this tune out {why}; shorten it, or split it over more discs"
+    )
     assert after.status_code == 201
 
 
