@@ -1,8 +1,8 @@
-"""Who computes in this process at a time: few, so that all others are answered meanwhile.
+"""Who computes in this process, or in a child of it, at a time: few, so that all others are answered meanwhile.
 
-One thread of a process runs at a time. Where many compute, each takes as much longer, nothing is finished sooner, and
-who only wants a page waits for a turn among all of them, several times over. So one computes, the others in the order
-in which they came, and wait where waiting costs nothing. A long search does not hold them up: once it has computed
+Where many compute, each takes as much longer, nothing is finished sooner, and in this process, one thread of which runs
+at a time, who only wants a page waits for a turn among all of them, several times over. So one computes, the others in
+the order in which they came, and wait where waiting costs nothing. A long search does not hold them up: once it has computed
 for a second the next begins beside it. That second is the processor's: by the wall's clock a busy process would make
 every computation long, let the next begin beside it, and be busier for it. Only a share of the threads may compute or
 wait for it, behind locks too; who finds no place there is told to come again. Each process counts for itself.
@@ -22,8 +22,8 @@ from service.web_turns import give_up_turn
 
 AT_A_TIME = 1  # that compute; with two a page at hand takes twice as long in the 99th percentile, measured
 LONG_S = 1.0  # s of the processor's time; after which who computes no longer counts; nearly all have ended by then
-# Of a processor, that counts as computed though less is: who waits for a database or a disk, which a quote writes to,
-# holds the next up for two seconds at most.
+# Of a processor, that counts as computed though less is: who waits for a disk, which a sound is written to, holds the
+# next up for two seconds at most. Of a child only what it computes counts.
 LEAST_SHARE = 0.5
 LOOK_AGAIN_S = 0.05  # s; at the least, till the next look at who computes
 MOST_AT_A_TIME = 8  # with those that have computed for longer
