@@ -36,7 +36,7 @@ from service.store.holds import FileKeeper
 from service.store.store import Store
 
 PR_SET_PDEATHSIG = 1  # linux/prctl.h
-GIVING_WAY = 10  # of nice(2): an order waits, and a person who looks at a layout does not
+GIVING_WAY = 15  # of nice(2): an order waits, and a person who looks at a layout does not
 
 
 def main() -> int:

@@ -31,9 +31,9 @@ from service.computing.messages import (
 )
 from service.planner import AnyPlanner
 
-# Of nice(2): before whoever computes, the processes of the web come that give what is at hand; a third of a processor
-# is left where they want it all. Orders, which nobody waits for, give way further.
-GIVING_WAY = 5
+# Of nice(2): before whoever computes, the processes of the web come that give what is at hand; where they want a whole
+# processor, a tenth of it is left. Orders, which nobody waits for, give way further.
+GIVING_WAY = 10
 
 
 def main() -> None:
