@@ -44,12 +44,12 @@ def test_the_reach_of_what_can_be_worked_out_by_hand(
 places = st.tuples(st.floats(-100, 100), st.floats(-100, 100))
 
 
-@pytest.mark.parametrize(("closed", "far_mm", "places"), [(True, 15, 3), (False, math.hypot(5, 10), 2)])
+@pytest.mark.parametrize(("ends", "far_mm", "places"), [("closed", 15, 3), ("open", math.hypot(5, 10), 2)])
 def test_the_bulge_of_the_last_vertex_is_of_the_way_back_which_an_open_line_has_not(
-    closed: bool, far_mm: float, places: int
+    ends: str, far_mm: float, places: int
 ) -> None:
     # From (5, -10) back to (-5, -10) by half a circle of radius 5, which reaches (0, -15) for a bulge of -1.
-    drawn = line((-5, -10, 0), (5, -10, -1), closed=closed)
+    drawn = line((-5, -10, 0), (5, -10, -1), closed=ends == "closed")
 
     assert reach_mm(drawn) == pytest.approx(far_mm)
     assert len(places_mm(drawn)) == places  # the vertices, and the middle of the arc
