@@ -5,7 +5,8 @@ at a time, who only wants a page waits for a turn among all of them, several tim
 the order in which they came, and wait where waiting costs nothing. A long search does not hold them up: once it has
 computed for a second the next begins beside it. That second is the processor's: by the wall's clock a busy process
 would make every computation long, let the next begin beside it, and be busier for it. Only a share of the threads may
-compute or wait for it, behind locks too; who finds no place there is told to come again. Each process counts for itself.
+compute or wait for it, behind locks too; who finds no place there is told to come again. Each process counts for
+itself.
 """
 
 import sys
