@@ -1,6 +1,7 @@
 """Compensated outlines: half a kerf smaller inside, half a kerf larger outside, by sums and by another library."""
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -10,10 +11,13 @@ from hypothesis import strategies as st
 
 from layout.check import check
 from layout.check.finding import Code, Finding
+from layout.check.kerf import nothing_closes_under_the_kerf
 from layout.cut import plan_cuts
 from layout.cut.plan import Circles, CutPlan, Entity, Outlines
 from layout.documents import Cutter, Movement
+from layout.mechanics.arrays import frozen_floats
 from layout.mechanics.offset import moved_outlines
+from layout.mechanics.projection import Shape
 from layout.place.disc import Disc
 from layout.read_back import read_back
 from layout.write import write_dxf
@@ -204,6 +208,35 @@ def test_everything_that_closes_is_named(movement: Movement, cutter: dict[str, f
     findings = kerf_findings(movement, cutter_with({"kerf_compensated": True, **cutter}))
 
     assert f"The {what} is " in " ".join(finding.message for finding in findings)
+
+
+@pytest.mark.parametrize(
+    ("arm_mm", "ends", "message"),
+    [
+        (0.1, "closed", "a part that is no wider than the kerf of 0.200 mm"),
+        (0.3, "closed", ""),
+        (0.1, "open", ""),
+    ],
+)
+def test_a_cut_whose_shape_closes_though_no_width_of_it_does_is_told_as_a_whole(
+    arm_mm: float, ends: str, message: str
+) -> None:
+    # A square with two arms, as wide as is said, under a kerf of 0.2 mm. No fold that can be stated has this shape.
+    cutter = cutter_with({"kerf_compensated": True, "kerf_mm": 0.2})
+    corners = [(0, 0), (2, 0), (2, 2), (2 - arm_mm, 2), (2 - arm_mm, 1), (arm_mm, 1), (arm_mm, 2), (0, 2)]
+    shape = Shape(
+        points_mm=frozen_floats(np.array(corners, dtype=np.float64)),
+        bulges=frozen_floats([0.0] * len(corners)),
+        closed=ends == "closed",
+    )
+    disc = disc_of(PLAIN, [(1, 1.0)], cutter)
+
+    findings = nothing_closes_under_the_kerf(replace(disc, pattern=replace(disc.pattern, cut=shape)))
+
+    told = " ".join(finding.message for finding in findings)
+    assert told.removesuffix(" of fibre-laser: drawn half a kerf smaller all round, it closes.") == (
+        f"The cut of a projection has {message}" if message else ""
+    )
 
 
 def test_what_closes_is_drawn_as_it_is_finished() -> None:
