@@ -11,7 +11,7 @@ from prometheus_client import CollectorRegistry
 from service.access.rates import Rates
 from service.api.about import about_routes
 from service.api.answers import with_safe_head
-from service.api.apart import PlannedApart
+from service.api.apart import PlannedApart, within_s
 from service.api.asking import guard
 from service.api.catalogue import catalogue_routes
 from service.api.computing_queue import open_computing_queue
@@ -21,7 +21,7 @@ from service.api.exports import export_routes
 from service.api.failures import answer_failures
 from service.api.hearing_shelf import HearingShelf
 from service.api.hooks import hook_routes
-from service.api.in_turn import InTurn
+from service.api.in_turn import in_turn
 from service.api.keys import key_routes
 from service.api.layout_cache import LayoutCache
 from service.api.layouts import layout_routes
@@ -77,7 +77,7 @@ def create_app(
     Args:
         settings: None for those that the environment asks for.
         planner: The computation; None for the walk.
-        children: They compute, instead of a planner in this process.
+        children: They compute layouts, each by the planner it is told; with them no planner is given.
 
     Raises:
         SettingsError: The environment asks for something the service cannot do.
@@ -85,6 +85,7 @@ def create_app(
     """
     if settings is None:
         settings = settings_from(os.environ)
+    assert planner is None or children is None
     if not is_logging():
         start_logging(settings.work)
     parts = open_parts(settings)
@@ -98,9 +99,9 @@ def create_app(
     guard(app, parts, Rates(settings.access))
     computing_queue = open_computing_queue(app, None)
     if children is None:
-        planner = InTurn(planner or TheWalk(), computing_queue)
+        planner = in_turn(planner or TheWalk(), computing_queue)
     else:
-        planner = PlannedApart(children, computing_queue, settings.work.plan_within_s)
+        planner = PlannedApart(children, within_s=within_s(settings))
     desk = LayoutDesk(planner, LayoutCache(settings), computing_queue, settings.limits)
     shelf = HearingShelf(settings)
     for routes in (*_routes_of_layouts(planner, desk, parts, shelf), *_routes_of_orders(parts, queue, shelf)):

@@ -56,7 +56,10 @@ class Limits:
     search_s: int = limit(
         60,
         "seconds",
-        "longest search for one layout, whatever its settings allow; with what follows an answer comes within 120 s",
+        "longest search for one layout, whatever its settings allow; the best disc found by then is given",
+    )
+    after_search_s: int = limit(
+        60, "seconds", "what may follow a search at least, till its discs are checked and their files made; usually one"
     )
     cache_layouts: int = limit(
         200, "layouts", "layouts kept for their links; the least recently used goes first, post the tune again then"

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import TYPE_CHECKING, Any, Protocol, TypeVar
+from contextlib import AbstractContextManager
+from typing import TYPE_CHECKING, Any, Literal, Protocol, TypeVar
 
 from service.importing import ONE_AT_A_TIME
 
@@ -16,6 +17,7 @@ if TYPE_CHECKING:
     from layout.play.plucks import Plucks
 
 Clock = Callable[[], float]  # seconds, only ever forward
+Part = Literal["laying-out", "files", "telling"]  # tune to checked discs; these to all files; to what needs no plan
 
 
 class AnotherDiscError(Exception):
@@ -156,6 +158,54 @@ class TheWalk:
         """As `layout.walk` does."""
         checked: CheckedDrawing = _walk().check_drawing(dxf, movement, cutter)
         return checked
+
+
+class PlannerAround:
+    """Does as another planner does, each part of its work within a context."""
+
+    def __init__(self, planner: AnyPlanner, around: Callable[[Part], AbstractContextManager[object]]) -> None:
+        """Wrap a planner.
+
+        Args:
+            planner: Does the work.
+            around: Gives the context of a part of it.
+        """
+        self._planner = planner
+        self._around = around
+
+    def lay_out_discs(
+        self,
+        tune: bytes,
+        movement: Movement,
+        cutter: Cutter,
+        settings: Settings,
+        clock: Clock | None = None,
+        *,
+        most_s: float | None = None,
+    ) -> tuple[Any, ...]:
+        """As the planner does, within "laying-out"."""
+        with self._around("laying-out"):
+            return self._planner.lay_out_discs(tune, movement, cutter, settings, clock, most_s=most_s)
+
+    def fingerprint_of(
+        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1
+    ) -> str:
+        """As the planner does."""
+        return self._planner.fingerprint_of(tune, movement, cutter, settings, number)
+
+    def files_of(self, laid_out: Any, *, not_good: str | None = None) -> dict[str, bytes]:
+        """As the planner does, within "files"."""
+        with self._around("files"):
+            return self._planner.files_of(laid_out, not_good=not_good)
+
+    def told_of(self, laid_out: Any, *, not_good: str | None = None) -> dict[str, bytes]:
+        """As the planner does, within "telling"."""
+        with self._around("telling"):
+            return self._planner.told_of(laid_out, not_good=not_good)
+
+    def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
+        """As the planner does."""
+        return self._planner.check_drawing(dxf, movement, cutter)
 
 
 def _walk() -> ModuleType:

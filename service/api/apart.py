@@ -6,17 +6,20 @@ does to a child, such as filling its memory or crashing a library, it does to th
 
 import itertools
 import logging
-from collections.abc import Callable
-from dataclasses import dataclass
+import math
+import time
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
 from typing import TypeVar
 
 from layout.documents import Cutter, Movement, Settings
 from service.api.computing_queue import ComputingQueue
 from service.api.problems import ProblemError
 from service.children.child_process import ChildEndedError, ChildTooLongError
-from service.computing.children import Children, ComputingChild, NoChildError
+from service.computing.children import MOST_CHILDREN, Children, ComputingChild, NoChildError, least_computed
 from service.computing.messages import Answer, Asked, DiscTold, Kind, Want, Work
-from service.planner import AnotherDiscError, CheckedDrawing, Clock, TheWalk
+from service.planner import AnotherDiscError, Clock, TheWalk
+from service.settings import ServiceSettings
 
 ATTEMPTS = 2  # that end a child before its work is refused: the first may have been ended by something else
 COME_AGAIN_S = 5  # s; where no child could be started
@@ -38,12 +41,14 @@ class DiscApart:
         work: What it was made from.
         name: Of its set, in the child.
         child: Who laid it out.
+        files: All its files where time stopped the search, which another search need not come to; else none.
     """
 
     told: DiscTold
     work: Work
     name: str
     child: ComputingChild
+    files: Mapping[str, bytes]
 
     @property
     def title(self) -> str:
@@ -76,22 +81,20 @@ class DiscApart:
         return self.told.stopped
 
 
-class PlannedApart:
-    """The walk, in children."""
+class PlannedApart(TheWalk):
+    """The walk, whose long parts are done in children. They take turns among themselves, whatever is computed here."""
 
-    def __init__(self, children: Children, queue: ComputingQueue, within_s: float) -> None:
+    def __init__(self, children: Children, *, within_s: float) -> None:
         """Have none started yet.
 
         Args:
             children: They compute.
-            queue: Where turns are waited for.
-            within_s: Seconds that a piece of work may take.
+            within_s: Seconds that a piece of work may take, tried again or not.
         """
         self._children = children
-        self._queue = queue
+        self._queue = ComputingQueue(most_at_a_time=MOST_CHILDREN)  # so that nobody holds a turn and waits for a child
         self._within_s = within_s
         self._names = map(str, itertools.count())
-        self._here = TheWalk()
 
     def lay_out_discs(
         self,
@@ -114,16 +117,19 @@ class PlannedApart:
         )
         name = next(self._names)
 
-        def discs(answer: Answer, child: ComputingChild) -> tuple[DiscApart, ...]:
-            return tuple(DiscApart(told=told, work=work, name=name, child=child) for told in answer.discs)
+        asked = Asked(want=Want.DISCS, work=work, name=name)
 
-        return self._ask(Asked(want=Want.DISCS, work=work, name=name), None, discs)
+        def disc(told: DiscTold, child: ComputingChild, last_s: float) -> DiscApart:
+            files: Mapping[str, bytes] = {}
+            if told.stopped == "time":
+                asked_more = replace(asked, want=Want.FILES, disc_number=told.disc_number)
+                files = self._answer(asked_more, child, last_s).files
+            return DiscApart(told=told, work=work, name=name, child=child, files=files)
 
-    def fingerprint_of(
-        self, tune: bytes, movement: Movement, cutter: Cutter, settings: Settings, number: int = 1
-    ) -> str:
-        """As the walk does, here."""
-        return self._here.fingerprint_of(tune, movement, cutter, settings, number)
+        def discs(child: ComputingChild, last_s: float) -> tuple[DiscApart, ...]:
+            return tuple(disc(told, child, last_s) for told in self._answer(asked, child, last_s).discs)
+
+        return self._with_child(None, discs)
 
     def files_of(self, laid_out: DiscApart, *, not_good: str | None = None) -> dict[str, bytes]:
         """As the walk does; laid out again where no child has the disc at hand.
@@ -132,8 +138,8 @@ class PlannedApart:
             AnotherDiscError: It was laid out again, and came to another disc.
             ProblemError: It takes more than it may, or no child could be started.
         """
-        if laid_out.told.files and (not_good is None or laid_out.good_to_cut):
-            return dict(laid_out.told.files)
+        if laid_out.files and (not_good is None or laid_out.good_to_cut):
+            return dict(laid_out.files)
         return self._of_disc(Want.FILES, laid_out, not_good)
 
     def told_of(self, laid_out: DiscApart, *, not_good: str | None = None) -> dict[str, bytes]:
@@ -146,10 +152,6 @@ class PlannedApart:
             return dict(laid_out.told.told)
         return self._of_disc(Want.TOLD, laid_out, not_good)
 
-    def check_drawing(self, dxf: bytes, movement: Movement, cutter: Cutter) -> CheckedDrawing:
-        """As the walk does, here: nobody asks the service for it."""
-        return self._here.check_drawing(dxf, movement, cutter)
-
     def _of_disc(self, want: Want, laid_out: DiscApart, not_good: str | None) -> dict[str, bytes]:
         asked = Asked(
             want=want,
@@ -158,27 +160,32 @@ class PlannedApart:
             disc_number=laid_out.disc_number,
             not_good=not_good,
         )
-        answer = self._ask(asked, laid_out.child, lambda answer, _: answer)
+        answer = self._with_child(laid_out.child, lambda child, last_s: self._answer(asked, child, last_s))
         if any(again.told["layout.json"] != laid_out.told.told["layout.json"] for again in answer.discs):
             raise AnotherDiscError(laid_out.fingerprint)
         return dict(answer.files)
 
-    def _ask(
-        self, asked: Asked, preferred: ComputingChild | None, result: Callable[[Answer, ComputingChild], ResultT]
+    def _with_child(
+        self, preferred: ComputingChild | None, work: Callable[[ComputingChild, float], ResultT]
     ) -> ResultT:
-        """What a child answers, tried again where one ends.
+        """What work with a child comes to, in turn; done again with another where the child ends.
+
+        Args:
+            preferred: The child that is taken where it is idle.
+            work: Is told the child, and till when by the monotonic clock it may take.
 
         Raises:
             LayoutError, ProblemError: As `lay_out_discs`.
         """
-        how_ended = ""
+        how_ended, last_s = "", math.inf
         for _ in range(ATTEMPTS):
             try:
                 with self._queue.admitted() as measure_by:
-                    measure_by(_nothing_computed)  # while one is started; it holds up who would have to start another
+                    last_s = min(last_s, time.monotonic() + self._within_s)  # waiting for the first turn takes nothing
+                    measure_by(least_computed())  # while one is started
                     with self._children.one(preferred) as child:
                         measure_by(child.stopwatch())
-                        return result(self._seen_to(child.ask(asked, self._within_s)), child)
+                        return work(child, last_s)
             except NoChildError as fault:
                 detail = f"no process could be started that computes ({fault})"
                 headers = {"Retry-After": str(COME_AGAIN_S)}
@@ -190,14 +197,16 @@ class PlannedApart:
                 log.warning("computing ended: %s", fault)
         raise _too_much(f"ended {ATTEMPTS} processes that tried; of the last, {how_ended}")
 
-    def _seen_to(self, answer: Answer) -> Answer:
-        """The answer, where it is one.
+    def _answer(self, asked: Asked, child: ComputingChild, last_s: float) -> Answer:
+        """What a child answers, where it is an answer.
 
         Raises:
+            ChildEndedError, ChildTooLongError: As the child does.
             LayoutError: The computation refused.
             ProblemError: It takes more memory than it may.
             ComputingFailedError: The program itself is at fault.
         """
+        answer = child.ask(asked, last_s - time.monotonic())
         match answer.kind:
             case Kind.TOO_LARGE:
                 raise _too_much(f"takes more than {self._children.setup.memory_mib} MiB of memory")
@@ -208,8 +217,9 @@ class PlannedApart:
         return answer
 
 
-def _nothing_computed() -> float:
-    return 0.0
+def within_s(settings: ServiceSettings) -> float:
+    """Seconds that one piece of work may take: as an order may, and at least the longest search and what follows."""
+    return max(settings.work.plan_within_s, settings.limits.search_s + settings.limits.after_search_s)
 
 
 def _too_much(why: str) -> ProblemError:

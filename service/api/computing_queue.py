@@ -24,7 +24,7 @@ from service.web_turns import give_up_turn
 AT_A_TIME = 1  # that compute; with two a page at hand takes twice as long in the 99th percentile, measured
 LONG_S = 1.0  # s of the processor's time; after which who computes no longer counts; nearly all have ended by then
 # Of a processor, that counts as computed though less is: who waits for a disk, which a sound is written to, holds the
-# next up for two seconds at most. Of a child only what it computes counts.
+# next up for two seconds at most.
 LEAST_SHARE = 0.5
 LOOK_AGAIN_S = 0.05  # s; at the least, till the next look at who computes
 MOST_AT_A_TIME = 8  # with those that have computed for longer
@@ -35,13 +35,17 @@ COMPUTING_QUEUE = "discwright computing queue"
 class ComputingQueue:
     """Lets those who compute begin one after the other; shared by the threads of a process."""
 
-    def __init__(self, stopwatch: Callable[[], Callable[[], float]] | None = None) -> None:
+    def __init__(
+        self, stopwatch: Callable[[], Callable[[], float]] | None = None, *, most_at_a_time: int = MOST_AT_A_TIME
+    ) -> None:
         """Open it to as many as like to wait.
 
         Args:
+            most_at_a_time: How many compute at most, with those that have computed for long.
             stopwatch: Called by who begins to compute; what it gives tells, in any thread, the seconds computed since.
         """
         self.places: int | None = None
+        self._most_at_a_time = most_at_a_time
         self._stopwatch = stopwatch or own_stopwatch
         self._taken_count = 0
         self._mine = threading.local()
@@ -123,7 +127,7 @@ class ComputingQueue:
 
     def _left_s(self) -> float | None:
         """How much those who compute must compute before the next may begin though none ends; None for never."""
-        if len(self._computed_s) >= MOST_AT_A_TIME:
+        if len(self._computed_s) >= self._most_at_a_time:
             return None
         left_s = sorted(LONG_S - computed_s() for computed_s in self._computed_s.values())
         counted_s = [each_s for each_s in left_s if each_s > 0]

@@ -7,7 +7,7 @@ import subprocess
 import time
 from collections.abc import Callable, Sequence
 
-from service.children.frames import BrokenFrameError, FrameReader, write_frame
+from service.children.frames import BrokenFrameError, FrameReader, frame_of, written_on
 
 WARM_WITHIN_S = 120.0  # s; the imports take two on an idle machine
 LOOK_EVERY_S = 0.2  # s; how soon a child is killed that shall go on no longer
@@ -51,7 +51,8 @@ class ChildProcess:
         )
         assert self._process.stdin is not None
         assert self._process.stdout is not None
-        self._orders = self._process.stdin
+        self._orders = self._process.stdin.fileno()
+        os.set_blocking(self._orders, False)
         self._pipes = (self._process.stdin, self._process.stdout)
         self._reader = FrameReader(self._process.stdout.fileno())
 
@@ -59,6 +60,11 @@ class ChildProcess:
     def pid(self) -> int:
         """Of the process."""
         return self._process.pid
+
+    @property
+    def is_alive(self) -> bool:
+        """Whether it has not ended."""
+        return self._process.poll() is None
 
     def ask(self, message: bytes, within_s: float, is_wanted: Callable[[], bool] = always) -> bytes:
         """Send a message and wait for the answer. After any of the errors the child is gone.
@@ -74,14 +80,13 @@ class ChildProcess:
             ChildUnwantedError: It was not wanted any more.
         """
         last_s = time.monotonic() + within_s
+        rest = frame_of(message)
         try:
-            write_frame(self._orders, message)
+            while rest := written_on(self._orders, rest, LOOK_EVERY_S):
+                _see_that_it_goes_on(last_s, is_wanted)
             while (answer := self._reader.read_within(LOOK_EVERY_S)) is None:
-                if not is_wanted():
-                    raise ChildUnwantedError
-                if time.monotonic() >= last_s:
-                    raise ChildTooLongError
-        except (BrokenFrameError, OSError) as fault:
+                _see_that_it_goes_on(last_s, is_wanted)
+        except BrokenFrameError as fault:
             raise ChildEndedError(self._how_it_ended()) from fault
         except BaseException:
             self.end()
@@ -100,8 +105,16 @@ class ChildProcess:
         try:
             code = self._process.wait(ENDING_S)
         except subprocess.TimeoutExpired:
-            code = 0  # it lives, but closed its pipe: no less gone
+            self.end()
+            return "its process broke its pipe off and lived on"
         self.end()
         if code >= 0:
             return f"its process ended with code {code}"
         return f"its process was ended by {signal.Signals(-code).name}"
+
+
+def _see_that_it_goes_on(last_s: float, is_wanted: Callable[[], bool]) -> None:
+    if not is_wanted():
+        raise ChildUnwantedError
+    if time.monotonic() >= last_s:
+        raise ChildTooLongError

@@ -1,7 +1,8 @@
 """A computing child, `python -m service.computing.child`: lays tunes out one after another, and may be killed.
 
 It imports the computation once. It knows no database and no store: all it works on comes through its pipe. It ends
-when its parent does, even within a computation, for a thread of its own waits for the end of the pipe.
+when its parent does, even within a computation, for a thread of its own waits for the end of the pipe; where a library
+holds the interpreter meanwhile, as soon as that returns.
 """
 
 import gc
@@ -11,6 +12,7 @@ import threading
 import time
 import traceback
 from contextlib import suppress
+from dataclasses import replace
 from queue import SimpleQueue
 from typing import Any, BinaryIO
 
@@ -49,11 +51,10 @@ def main() -> None:
     gc.freeze()  # what is imported stays: looking for garbage among it takes a fifth of the time of a layout
     write_frame(answers, answer_as_bytes(Answer(kind=Kind.WARM, resident_mib=resident_mib())))
     while True:
-        asked = asked_from_bytes(coming.get())
-        answer = Answer(kind=Kind.TOO_LARGE, resident_mib=resident_mib())
+        message, answer = coming.get(), Answer(kind=Kind.TOO_LARGE)
         with suppress(MemoryError), within_memory(setup.memory_mib):
-            answer = answer_of(asked, planner, at_hand)
-        write_frame(answers, answer_as_bytes(answer))
+            answer = answer_of(message, planner, at_hand)
+        write_frame(answers, answer_as_bytes(replace(answer, resident_mib=resident_mib())))
 
 
 def _read_on(orders: BinaryIO, coming: "SimpleQueue[bytes]") -> None:
@@ -63,31 +64,33 @@ def _read_on(orders: BinaryIO, coming: "SimpleQueue[bytes]") -> None:
     os._exit(0)
 
 
-def answer_of(asked: Asked, planner: AnyPlanner, at_hand: SetsAtHand[Any]) -> Answer:
-    """What is answered; the discs are at hand from now on.
+def answer_of(message: bytes, planner: AnyPlanner, at_hand: SetsAtHand[Any]) -> Answer:
+    """What is answered to what is asked; the discs are at hand from now on.
 
     Raises:
         MemoryError: It takes more than there is.
     """
     try:
-        held = at_hand.called(asked.name)
-        laid_out = held or _laid_out(asked.work, planner)
-        if not held:
-            at_hand.add(asked.name, laid_out)
-        if asked.want is Want.DISCS:
-            discs = tuple(_told(one, planner, with_files=one.stopped == "time") for one in laid_out)
-            return Answer(kind=Kind.DONE, discs=discs, resident_mib=resident_mib())
-        one = laid_out[asked.disc_number - 1]
-        make = planner.files_of if asked.want is Want.FILES else planner.told_of
-        files = make(one, not_good=asked.not_good)
-        anew = () if held else (_told(one, planner, with_files=False),)
-        return Answer(kind=Kind.DONE, discs=anew, files=files, resident_mib=resident_mib())
+        return _done(asked_from_bytes(message), planner, at_hand)
     except LayoutError as error:
-        return Answer(kind=Kind.REFUSED, error=error, resident_mib=resident_mib())
+        return Answer(kind=Kind.REFUSED, error=error)
     except MemoryError:
         raise
     except Exception:  # noqa: BLE001 -- told to the parent, which logs it under the request's id
-        return Answer(kind=Kind.FAILED, trace=traceback.format_exc(), resident_mib=resident_mib())
+        return Answer(kind=Kind.FAILED, trace=traceback.format_exc())
+
+
+def _done(asked: Asked, planner: AnyPlanner, at_hand: SetsAtHand[Any]) -> Answer:
+    held = at_hand.called(asked.name)
+    laid_out = held or _laid_out(asked.work, planner)
+    if not held:
+        at_hand.add(asked.name, laid_out)
+    if asked.want is Want.DISCS:
+        return Answer(kind=Kind.DONE, discs=tuple(_told(one, planner) for one in laid_out))
+    one = laid_out[asked.disc_number - 1]
+    make = planner.files_of if asked.want is Want.FILES else planner.told_of
+    files = make(one, not_good=asked.not_good)
+    return Answer(kind=Kind.DONE, discs=() if held else (_told(one, planner),), files=files)
 
 
 def _laid_out(work: Work, planner: AnyPlanner) -> tuple[Any, ...]:
@@ -98,7 +101,7 @@ def _laid_out(work: Work, planner: AnyPlanner) -> tuple[Any, ...]:
     return discs
 
 
-def _told(laid_out: Any, planner: AnyPlanner, *, with_files: bool) -> DiscTold:
+def _told(laid_out: Any, planner: AnyPlanner) -> DiscTold:
     return DiscTold(
         title=laid_out.title,
         fingerprint=laid_out.fingerprint,
@@ -107,7 +110,6 @@ def _told(laid_out: Any, planner: AnyPlanner, *, with_files: bool) -> DiscTold:
         good_to_cut=laid_out.good_to_cut,
         stopped=laid_out.stopped,
         told=planner.told_of(laid_out),
-        files=planner.files_of(laid_out) if with_files else {},
     )
 
 

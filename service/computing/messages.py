@@ -101,7 +101,6 @@ class DiscTold:
         good_to_cut: Whether no error-level finding stands.
         stopped: What ended the search too early, or None.
         told: layout.json and report.json.
-        files: All its files where time stopped the search, which another search need not come to; else none.
     """
 
     title: str
@@ -111,7 +110,6 @@ class DiscTold:
     good_to_cut: bool
     stopped: str | None
     told: Mapping[str, bytes]
-    files: Mapping[str, bytes] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -187,10 +185,7 @@ def answer_as_bytes(answer: Answer) -> bytes:
 
     head = {
         "kind": answer.kind,
-        "discs": [
-            {**asdict(replace(disc, told={}, files={})), "told": names(disc.told), "files": names(disc.files)}
-            for disc in answer.discs
-        ],
+        "discs": [{**asdict(replace(disc, told={})), "told": names(disc.told)} for disc in answer.discs],
         "files": names(answer.files),
         "error": None if answer.error is None else told_of_error(answer.error),
         "trace": answer.trace,
@@ -207,9 +202,7 @@ def answer_from_bytes(message: bytes) -> Answer:
     def files(names: Sequence[str]) -> dict[str, bytes]:
         return {name: next(following) for name in names}
 
-    discs = tuple(
-        DiscTold(**{**disc, "told": files(disc["told"]), "files": files(disc["files"])}) for disc in head["discs"]
-    )
+    discs = tuple(DiscTold(**{**disc, "told": files(disc["told"])}) for disc in head["discs"])
     error = None if head["error"] is None else error_from_told(head["error"])
     told = {name: head[name] for name in ("trace", "resident_mib")}
     return Answer(kind=Kind(head["kind"]), discs=discs, files=files(head["files"]), error=error, **told)

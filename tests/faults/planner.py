@@ -69,6 +69,11 @@ def _grow(mib: bytes) -> None:
     _GROWN.append(b"x" * (int(mib) * 1024 * 1024))
 
 
+def _grow_too_large(mib: bytes) -> None:
+    _grow(mib)
+    raise MemoryError
+
+
 def _divide(_: bytes) -> None:
     raise ZeroDivisionError("of the test")
 
@@ -83,6 +88,7 @@ _DEEDS: dict[bytes, Any] = {
     b"spin": _spin,
     b"print": _print,
     b"grow": _grow,
+    b"grow-too-large": _grow_too_large,
     b"divide": _divide,
     b"stop": lambda _: None,  # the search, as time does; told of what is laid out
 }

@@ -20,6 +20,7 @@ import pytest
 from prometheus_client.parser import text_string_to_metric_families
 
 from tests.faults.fleet import children_of
+from tests.service.processes import is_alive
 from tests.service.shop import TUNE
 
 COMMAND = [sys.executable, "-m", "service.commands.main"]
@@ -120,13 +121,6 @@ def wait_for(holds: Callable[[], bool], within_s: float = WITHIN_S) -> None:
 def all_below(pid: int) -> list[int]:
     below = children_of(pid)
     return below + [deeper for one in below for deeper in all_below(one)]
-
-
-def is_alive(pid: int) -> bool:
-    try:
-        return "\nState:\tZ" not in Path(f"/proc/{pid}/status").read_text()
-    except FileNotFoundError:
-        return False
 
 
 @contextmanager

@@ -2,10 +2,11 @@
 
 import os
 import signal
+import struct
 import subprocess
 import sys
 import time
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from dataclasses import replace
 from pathlib import Path
 
@@ -14,9 +15,10 @@ import pytest
 from layout import walk
 from layout.documents import read_settings, shipped_cutter, shipped_movement
 from layout.errors import MidiReadError
-from service.children.child_process import ChildEndedError, ChildTooLongError
+from service.children.child_process import ChildEndedError, ChildProcess, ChildTooLongError
 from service.children.frames import read_frame, write_frame
-from service.computing.children import CHILD, GROWN_MIB, ComputingChild
+from service.computing import children
+from service.computing.children import CHILD, GROWN_MIB, LEAST_SHARE, ComputingChild
 from service.computing.messages import (
     Answer,
     Asked,
@@ -29,6 +31,7 @@ from service.computing.messages import (
     setup_as_bytes,
 )
 from tests.faults.ordering import tune_called
+from tests.service.processes import is_alive, wait_until
 from tests.service.shop import TUNE
 
 MEMORY_MIB = 300
@@ -90,7 +93,6 @@ def test_a_child_lays_out_what_this_process_would(walking_child: ComputingChild)
     assert [dict(disc.told) for disc in answer.discs] == [walk.told_of(disc) for disc in here]
     for name in ("title", "fingerprint", "disc_number", "disc_count", "good_to_cut", "stopped"):
         assert [getattr(disc, name) for disc in answer.discs] == [getattr(disc, name) for disc in here]
-    assert [dict(disc.files) for disc in answer.discs] == [{}, {}]
 
 
 @pytest.mark.parametrize("name", ["two", "another"])
@@ -117,13 +119,12 @@ def test_what_is_told_with_a_reason_is_what_this_process_would_tell(walking_chil
     assert dict(answer.files) == walk.told_of(here, not_good="for the wall")
 
 
-def test_a_disc_whose_search_time_stopped_comes_with_all_its_files(kept_child: ComputingChild) -> None:
-    # The planner of the tests stops no search; what it lays out says so of itself where its tune does.
-    answer = ask(kept_child, tune_called("do:stop;"))
+def test_a_message_that_is_none_is_told_as_a_fault_and_the_child_goes_on(kept_child: ComputingChild) -> None:
+    answer = answer_from_bytes(kept_child._process.ask(b"no message", LONG_S))
 
-    [disc] = answer.discs
-    assert disc.stopped == "time"
-    assert disc.files["disc.dxf"].startswith(b"disc.dxf of ")
+    assert answer.kind is Kind.FAILED
+    assert answer.trace.startswith("Traceback")
+    assert ask(kept_child, tune_called("Harvest")).kind is Kind.DONE
 
 
 def test_a_tune_that_cannot_be_read_is_refused_with_the_error_itself(walking_child: ComputingChild) -> None:
@@ -154,6 +155,60 @@ def test_work_that_fills_memory_is_told_as_too_large_and_the_child_goes_on(kept_
     assert ask(kept_child, tune_called("Harvest")).kind is Kind.DONE
 
 
+def test_a_child_whose_memory_stays_full_after_work_that_was_too_large_is_of_no_more_use(child: ComputingChild) -> None:
+    answer = ask(child, tune_called(f"do:grow-too-large {int(GROWN_MIB) + 50};"))
+
+    assert (answer.kind, child.is_of_use) == (Kind.TOO_LARGE, False)
+
+
+def test_an_idle_child_that_something_else_has_ended_is_of_no_more_use(child: ComputingChild) -> None:
+    os.kill(child.pid, signal.SIGKILL)
+
+    assert wait_until(lambda: not child.is_of_use)
+
+
+def test_a_stopped_child_is_given_up_though_its_pipe_has_no_room_for_what_is_asked(child: ComputingChild) -> None:
+    os.kill(child.pid, signal.SIGSTOP)
+
+    with pytest.raises(ChildTooLongError):  # a pipe holds 64 KiB (pipe(7))
+        ask(child, tune_called("Harvest") + bytes(4_000_000), within_s=0.5)
+
+
+def test_a_stopped_child_is_taken_to_compute_a_little(child: ComputingChild) -> None:
+    os.kill(child.pid, signal.SIGSTOP)
+    computed_s = child.stopwatch()
+    time.sleep(0.5)
+
+    assert computed_s() >= LEAST_SHARE * 0.5
+
+
+def test_children_that_end_in_any_way_leave_no_file_open() -> None:
+    before = len(list(Path("/proc/self/fd").iterdir()))
+    for deed in ("exit 3", "segfault", "spin"):
+        child = ComputingChild(SETUP)
+        with pytest.raises((ChildEndedError, ChildTooLongError)):
+            ask(child, tune_called(f"do:{deed};"), within_s=1.0 if deed == "spin" else LONG_S)
+
+    assert len(list(Path("/proc/self/fd").iterdir())) == before
+
+
+def test_a_child_that_says_what_is_no_message_at_its_start_is_ended(monkeypatch: pytest.MonkeyPatch) -> None:
+    started: list[int] = []
+    lines = "import sys, time; sys.stdout.buffer.write(bytes(7) + b'\\x01?'); sys.stdout.flush(); time.sleep(60)"
+    monkeypatch.setattr(children, "CHILD", (sys.executable, "-c", lines))
+    monkeypatch.setattr(children, "ChildProcess", lambda command: noted(ChildProcess(command), started))
+
+    with pytest.raises(struct.error):
+        ComputingChild(SETUP)
+
+    assert not is_alive(started[0])
+
+
+def noted(process: ChildProcess, started: list[int]) -> ChildProcess:
+    started.append(process.pid)
+    return process
+
+
 def test_a_child_that_keeps_memory_is_of_no_more_use(child: ComputingChild) -> None:
     ask(child, tune_called(f"do:grow {int(GROWN_MIB) - 50};"))
     before = child.is_of_use
@@ -178,7 +233,7 @@ def test_work_that_takes_too_long_is_killed_in_time(child: ComputingChild) -> No
     with pytest.raises(ChildTooLongError):
         ask(child, tune_called("do:spin;"), within_s=1.0)
 
-    assert 1.0 <= time.monotonic() - begun_s < 3.0
+    assert 1.0 <= time.monotonic() - begun_s < LONG_S
     assert not is_alive(child.pid)
     assert not child.is_of_use
 
@@ -230,7 +285,7 @@ def test_a_child_ends_with_its_parent_even_while_it_computes() -> None:
         parent.kill()
 
     assert lived
-    assert wait_until(lambda: not is_alive(pid), within_s=3.0)
+    assert wait_until(lambda: not is_alive(pid), within_s=LONG_S)
 
 
 def test_a_child_whose_pipe_is_let_go_ends_with_code_0_between_its_answers() -> None:
@@ -245,20 +300,3 @@ def test_a_child_whose_pipe_is_let_go_ends_with_code_0_between_its_answers() -> 
         code = process.wait(LONG_S)
 
     assert ([answer.kind for answer in answers], code) == ([Kind.WARM, Kind.DONE], 0)
-
-
-def is_alive(pid: int) -> bool:
-    try:
-        state = Path(f"/proc/{pid}/stat").read_text().rpartition(")")[2].split()[0]
-    except FileNotFoundError:
-        return False
-    return state != "Z"
-
-
-def wait_until(true: Callable[[], bool], within_s: float = 10.0) -> bool:
-    last_s = time.monotonic() + within_s
-    while not true():
-        if time.monotonic() > last_s:
-            return False
-        time.sleep(0.02)
-    return True

@@ -156,6 +156,46 @@ def test_where_none_can_be_started_it_is_told_why_and_the_next_tries_again(
     assert f"no computing child could be started: {str(fault) or why}" in caplog.text
 
 
+def test_a_fault_that_nobody_thought_of_takes_no_place_for_ever(children: Children) -> None:
+    Child.fault = KeyError("of the test")
+    for _ in range(MOST_CHILDREN + 1):
+        with pytest.raises(KeyError), children.one():
+            pass
+    Child.fault = None
+
+    with children.one() as child:
+        assert child is Child.started[0]
+
+
+def test_a_child_that_something_else_has_ended_while_it_was_idle_is_lent_to_nobody(children: Children) -> None:
+    with children.one() as first, children.one() as second:
+        pass
+    first.is_of_use = False
+
+    with children.one(first) as instead, children.one() as new:
+        pass
+
+    assert (instead, new) == (second, Child.started[2])
+    assert first.has_ended
+
+
+def test_a_child_is_given_back_though_no_thread_can_be_had_to_look_for_spare_ones(
+    children: Children, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def no_thread(timer: LaterTimer) -> None:
+        raise RuntimeError("can't start new thread")
+
+    with monkeypatch.context() as patch:
+        patch.setattr(LaterTimer, "start", no_thread)
+        with children.one(), children.one():
+            pass
+    with children.one():
+        pass
+
+    assert len(Child.started) == 2
+    assert len(LaterTimer.waiting) == 1  # whoever came next tried again
+
+
 def test_a_warm_child_is_there_before_the_first_who_asks(children: Children) -> None:
     children.warm()
     before = list(Child.started)
@@ -169,17 +209,19 @@ def test_spare_children_go_after_a_while_and_one_stays(children: Children, monke
     monkeypatch.setattr(children_module.time, "monotonic", lambda: now_s[0])
     with children.one(), children.one(), children.one():
         pass
-    [looking, *_] = LaterTimer.waiting
+    [looking] = LaterTimer.waiting  # one, though three were given back
 
     now_s[0] += SPARE_S - 1
     looking.work()
     too_soon = [child.has_ended for child in Child.started]
     now_s[0] += 1
-    looking.work()
+    looking_again = LaterTimer.waiting[-1]
+    looking_again.work()
     in_time = [child.has_ended for child in Child.started]
-    looking.work()
 
     assert looking.after_s == SPARE_S
+    assert looking_again is not looking
+    assert len(LaterTimer.waiting) == 2  # and one child alone is not looked at
     assert too_soon == [False] * 3
     assert sorted(in_time) == [False, True, True]
     assert [child.has_ended for child in Child.started] == in_time

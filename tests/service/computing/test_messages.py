@@ -33,6 +33,7 @@ from service.computing.messages import (
     setup_as_bytes,
     setup_from_bytes,
 )
+from tests.fuzz.random_machines import cutters, movements
 from tests.layout.examples import movement_with
 
 SETTINGS = read_settings('{"title": "Harvest \\u00e4", "speed": {"mode": "fit"}, "time_limit_s": 2.5}')
@@ -64,13 +65,30 @@ def test_what_a_number_is_worth_goes_along() -> None:
     assert read.work.movement.stated == movement.stated
 
 
+@given(movement=movements(), cutter=cutters())
+def test_so_do_documents_drawn_by_lot(movement: Movement, cutter: Cutter) -> None:
+    assert asked_from_bytes(asked_as_bytes(asked_of(movement, cutter))) == asked_of(movement, cutter)
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        '{"discs": 3, "passage": {"from_s": 1.5, "to_s": 20}, "speed": {"mode": "factor", "factor": 0.75}}',
+        '{"speed": {"mode": "fit", "most": 4}, "writing": {"pluck_again_s": 0.3, "chords": "bass-first"}}',
+        '{"rulings": [{"note": 0, "do": "leave-out"}, {"note": 3, "do": "must-sound"}], "order": "R-7"}',
+    ],
+)
+def test_settings_go_along_whole(text: str) -> None:
+    asked = asked_of(shipped_movement("tarnlight-17"), shipped_cutter("fibre-laser"), read_settings(text))
+
+    assert asked_from_bytes(asked_as_bytes(asked)) == asked
+
+
 CONTENTS = st.dictionaries(st.text(min_size=1, max_size=12), st.binary(max_size=200), max_size=4)
 
 
-@given(told=CONTENTS, files=CONTENTS, of_disc=CONTENTS, count=st.integers(0, 3))
-def test_files_come_back_to_the_byte(
-    told: Mapping[str, bytes], files: Mapping[str, bytes], of_disc: Mapping[str, bytes], count: int
-) -> None:
+@given(told=CONTENTS, of_disc=CONTENTS, count=st.integers(0, 3))
+def test_files_come_back_to_the_byte(told: Mapping[str, bytes], of_disc: Mapping[str, bytes], count: int) -> None:
     discs = tuple(
         DiscTold(
             title="Harvest",
@@ -80,7 +98,6 @@ def test_files_come_back_to_the_byte(
             good_to_cut=number == 1,
             stopped="time" if number else None,
             told=told,
-            files=files,
         )
         for number in range(count)
     )
