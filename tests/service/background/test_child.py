@@ -24,10 +24,11 @@ from service.orders.test_tunes import Deed, state_tunes
 from service.parts import Parts
 from service.store.faults import StoreBusyError
 from service.store.holds import FileKeeper
+from tests.faults.fleet import wait_for
 from tests.faults.ordering import CUTTER, MOVEMENT, PlansHere, tune_called
 from tests.faults.planner import QuietPlanner
 from tests.service.conftest import parts_of, sqlite_first
-from tests.service.processes import is_alive, wait_until
+from tests.service.processes import is_alive
 
 MEMORY_MIB = 300
 LONG_S = 30.0
@@ -258,7 +259,7 @@ def test_a_child_dies_with_its_worker_even_while_it_computes(setup: ChildSetup, 
     parent.stdout.close()
 
     assert lived
-    assert wait_until(lambda: not is_alive(pid), within_s=2.0)
+    wait_for(lambda: not is_alive(pid), within_s=2.0)
 
 
 _PARENT = """

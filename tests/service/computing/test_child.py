@@ -30,8 +30,9 @@ from service.computing.messages import (
     asked_as_bytes,
     setup_as_bytes,
 )
+from tests.faults.fleet import wait_for
 from tests.faults.ordering import tune_called
-from tests.service.processes import is_alive, wait_until
+from tests.service.processes import is_alive
 from tests.service.shop import TUNE
 
 MEMORY_MIB = 300
@@ -164,7 +165,7 @@ def test_a_child_whose_memory_stays_full_after_work_that_was_too_large_is_of_no_
 def test_an_idle_child_that_something_else_has_ended_is_of_no_more_use(child: ComputingChild) -> None:
     os.kill(child.pid, signal.SIGKILL)
 
-    assert wait_until(lambda: not child.is_of_use)
+    wait_for(lambda: not child.is_of_use, within_s=LONG_S)
 
 
 def test_a_stopped_child_is_given_up_though_its_pipe_has_no_room_for_what_is_asked(child: ComputingChild) -> None:
@@ -285,7 +286,7 @@ def test_a_child_ends_with_its_parent_even_while_it_computes() -> None:
         parent.kill()
 
     assert lived
-    assert wait_until(lambda: not is_alive(pid), within_s=LONG_S)
+    wait_for(lambda: not is_alive(pid), within_s=LONG_S)
 
 
 def test_a_child_whose_pipe_is_let_go_ends_with_code_0_between_its_answers() -> None:
