@@ -8,11 +8,14 @@ three of them (common practice). The event's clocks per metronome click are not 
 programs write 24 whatever the metre.
 """
 
+from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
+from operator import itemgetter
 
 import numpy as np
 
-from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats, frozen_ints
 from layout.read.faults import counted
 from layout.read.limits import LIMITS
 from layout.read.oddities import Oddities
@@ -53,25 +56,38 @@ class Bars:
     beat_s: FloatArray
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Stretch:
-    """Bars of one metre, all whole but perhaps the last; lengths in parts of a tick."""
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Stretches:
+    """Bars of one metre each, one stretch after the other, all whole but perhaps the last of each.
 
-    begin: int
-    end: int
-    beat: int
-    beats_of_bar: int
+    All have shape (s,), s at least 1; lengths are in parts of a tick.
+    """
+
+    begin: IntArray
+    end: IntArray
+    beat: IntArray
+    beats_of_bar: IntArray
 
     @property
     def beat_count(self) -> int:
-        return -((self.begin - self.end) // self.beat)
+        return int((-((self.begin - self.end) // self.beat)).sum())
+
+    def __iter__(self) -> Iterator[tuple[int, ...]]:
+        """Begin, end, beat and beats of a bar of each."""
+        columns = (self.begin, self.end, self.beat, self.beats_of_bar)
+        return zip(*(column.tolist() for column in columns), strict=True)
 
 
 def time_signature(payload: bytes) -> TimeSignature | None:
     """The metre a time-signature event states; None where it is cut short or none that can be written."""
-    if len(payload) < 2 or payload[0] == 0 or payload[1] > LIMITS.denominator_power:  # noqa: PLR2004  its two bytes
+    return _metre_of(payload[:2])
+
+
+@lru_cache(maxsize=256)
+def _metre_of(stated: bytes) -> TimeSignature | None:
+    if len(stated) < 2 or stated[0] == 0 or stated[1] > LIMITS.denominator_power:  # noqa: PLR2004  its two bytes
         return None
-    return TimeSignature(numerator=payload[0], denominator_power=payload[1])
+    return TimeSignature(numerator=stated[0], denominator_power=stated[1])
 
 
 def bars_and_beats(
@@ -95,41 +111,38 @@ def bars_and_beats(
     if times.ticks_per_quarter is None:
         return _plain(last_onset_s)
     stretches = _stretches(signatures, times.ticks_per_quarter, last_onset_tick)
-    beat_count = sum(stretch.beat_count for stretch in stretches)
+    beat_count = stretches.beat_count
     if beat_count > LIMITS.beats:
         told = f"The file counts {counted(beat_count, 'beat', 'beats')} to its last note, more than music has"
         oddities.say(f"{told}: its bars are counted as 4/4 at 120 beats a minute.", at=0)
         return _plain(last_onset_s)
-    beats = [np.arange(one.begin, one.end, one.beat, dtype=np.int64) for one in stretches]
-    end = np.array([stretches[-1].end], dtype=np.int64)
-    bars = [beat[:: one.beats_of_bar] for beat, one in zip(beats, stretches, strict=True)]
+    beats = [np.arange(begin, end, beat, dtype=np.int64) for begin, end, beat, _ in stretches]
+    bars = [beat[::beats_of_bar] for beat, (*_, beats_of_bar) in zip(beats, stretches, strict=True)]
     bar_s, beat_s = (
-        times.seconds_at(np.concatenate([*parts, end]), parts_per_tick=_PARTS_PER_TICK) for parts in (bars, beats)
+        times.seconds_at(np.concatenate([*parts, stretches.end[-1:]]), parts_per_tick=_PARTS_PER_TICK)
+        for parts in (bars, beats)
     )
     return Bars(bar_s=frozen_floats(bar_s), beat_s=frozen_floats(beat_s))
 
 
 def _stretches(
     signatures: list[tuple[int, int, TimeSignature]], ticks_per_quarter: int, last_onset_tick: int
-) -> list[_Stretch]:
-    """The metres that hold up to the last onset, one after the other; the last ends with a bar past it."""
+) -> _Stretches:
+    """The metres that hold up to the last onset; the last ends with a bar past it."""
     changes = {0: COMMON_TIME}
-    changes.update((tick, metre) for tick, _, metre in sorted(signatures, key=lambda one: one[:2]))
-    last = last_onset_tick * _PARTS_PER_TICK
-    found: list[_Stretch] = []
-    following: list[int | None] = [*changes, None]
-    for (tick, metre), next_tick in zip(changes.items(), following[1:], strict=True):
-        begin = tick * _PARTS_PER_TICK
-        note = ticks_per_quarter * _PARTS_PER_WHOLE_NOTE >> metre.denominator_power
-        bar = note * metre.numerator
-        end = begin + ((last - begin) // bar + 1) * bar
-        if next_tick is not None:
-            end = min(end, next_tick * _PARTS_PER_TICK)
-        beat = note * metre.notes_of_beat
-        found.append(_Stretch(begin=begin, end=end, beat=beat, beats_of_bar=bar // beat))
-        if end > last:
-            break
-    return found
+    changes.update((tick, metre) for tick, _, metre in sorted(signatures, key=itemgetter(0, 1)))
+    last, metres = last_onset_tick * _PARTS_PER_TICK, changes.values()
+    begin = np.array(list(changes), dtype=np.int64) * _PARTS_PER_TICK
+    power = np.array([metre.denominator_power for metre in metres], dtype=np.int64)
+    note = ticks_per_quarter * _PARTS_PER_WHOLE_NOTE >> power
+    bar = note * np.array([metre.numerator for metre in metres], dtype=np.int64)
+    end = begin + ((last - begin) // bar + 1) * bar
+    np.minimum(end[:-1], begin[1:], out=end[:-1])
+    count = int((end > last).argmax()) + 1
+    beat = note * np.array([metre.notes_of_beat for metre in metres], dtype=np.int64)
+    parts = (begin, end, beat, bar // beat)
+    of_begin, of_end, of_beat, of_bar = (frozen_ints(part[:count]) for part in parts)
+    return _Stretches(begin=of_begin, end=of_end, beat=of_beat, beats_of_bar=of_bar)
 
 
 def _plain(last_onset_s: float) -> Bars:

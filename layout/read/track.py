@@ -139,7 +139,10 @@ class SequenceWalk:
 
     def _after_payload(self, at: int) -> tuple[int, int]:
         """Where the payload of the length that stands at `at` begins and ends in the track."""
-        length, begin = read_quantity(self._body, at, base=self._base)
+        body = self._body
+        # A length of one byte, nearly every one, is spared the call.
+        is_short = at < len(body) and not body[at] & 0x80
+        length, begin = (body[at], at + 1) if is_short else read_quantity(body, at, base=self._base)
         if length > len(self._body) - begin:
             raise MidiReadError(
                 byte_offset=self._base + at,
