@@ -14,7 +14,7 @@ from collections import deque
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
-AT_A_TIME = 2  # that work; with four health takes half as long again under twice the load, with all 32 ten times
+AT_A_TIME = 2  # that work; with all 32 threads health takes some ten times as long under twice the load, measured
 # s; after which who works no longer counts: it waits for a database, a slow client or a disk. With 0.1 s, and four at
 # a time, health took 0.41 s at the 99th percentile under twice the load, once; with this, over four runs, 0.08 to 0.24.
 LONG_S = 0.25
