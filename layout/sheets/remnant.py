@@ -34,7 +34,8 @@ def remnants_of(
     half = least_mm / 2
     core = left.buffer(-half)
     wide = core.buffer(half).intersection(left)
-    smoothed = wide.buffer(-SMOOTHED_MM, join_style="mitre").simplify(SMOOTHED_MM)
+    # GEOS leaves out a ring's first corner too, by how far it is from what the first pass left: twice the tolerance.
+    smoothed = wide.buffer(-SMOOTHED_MM, join_style="mitre").simplify(SMOOTHED_MM / 2)
     parts = [part for part in getattr(smoothed, "geoms", [smoothed]) if part.area >= least_mm**2 / 2]
     pieces = [piece_of(orient(part)) for part in parts if isinstance(part, shapely.Polygon)]
     return tuple(sorted(pieces, key=lambda piece: -piece.area_mm2))
