@@ -1,4 +1,4 @@
-"""A round trip to begin with: the ways that save most first, then piece to piece."""
+"""A round trip to begin with: the shortest ways first, then piece to piece."""
 
 import numpy as np
 
@@ -9,17 +9,16 @@ _WAYS = 2  # of a stop on a round trip: one comes, one goes
 
 
 def first_trip(places_mm: FloatArray, near: NearStops) -> list[int]:
-    """All stops once, in the order of a round trip that is short already.
+    """All stops once, in the order of a round trip.
 
-    A way between two near stops saves what it would take to go home between them (G. Clarke and J. W. Wright, 1964).
-    The way that saves most is taken first, then the next, wherever both ends still want one and no round is closed.
-    What pieces that leaves are walked from end to nearest end.
+    The shortest way between two near stops is taken first, then the next, wherever both ends still want one and no
+    round is closed (the greedy start, J. L. Bentley, 1992). What pieces that leaves are walked from end to nearest end.
 
     Args:
         places_mm: Shape (n, 2); the last is home.
         near: The near neighbours of each.
     """
-    pieces = _pieces(_joined(near, _saved_mm(places_mm, near), len(places_mm)))
+    pieces = _pieces(_joined(near))
     first_mm = places_mm[[piece[0] for piece in pieces]]
     last_mm = places_mm[[piece[-1] for piece in pieces]]
     ends_mm = np.concatenate([first_mm, last_mm])
@@ -35,19 +34,14 @@ def first_trip(places_mm: FloatArray, near: NearStops) -> list[int]:
     return trip
 
 
-def _saved_mm(places_mm: FloatArray, near: NearStops) -> FloatArray:
-    """Shape (m,). What each way saves; a way home saves nothing."""
-    dx_mm, dy_mm = (places_mm - places_mm[-1]).T
-    home_mm = np.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)
-    return np.asarray(home_mm[near.one] + home_mm[near.other] - near.away_mm)
-
-
-def _joined(near: NearStops, saved_mm: FloatArray, count: int) -> list[list[int]]:
+def _joined(near: NearStops) -> list[list[int]]:
     """For each stop those that it is joined to: two, one or none, and nowhere a closed round."""
-    low, high = np.minimum(near.one, near.other), np.maximum(near.one, near.other)
+    count = len(near.other)
+    one, rank = np.nonzero(np.isfinite(near.away_mm))
+    other, away_mm = near.other[one, rank], near.away_mm[one, rank]
+    low, high = np.minimum(one, other), np.maximum(one, other)
     _, once = np.unique(low * count + high, return_index=True)
-    once = once[high[once] != count - 1]
-    best = once[np.lexsort((high[once], low[once], -saved_mm[once]))]
+    best = once[np.lexsort((high[once], low[once], away_mm[once]))]
     joined: list[list[int]] = [[] for _ in range(count)]
     far_end = list(range(count))
     for one, other in zip(low[best].tolist(), high[best].tolist(), strict=True):

@@ -40,7 +40,20 @@ class _Block:
     high_mm: FloatArray
 
 
-def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> tuple[Lettering, ...]:
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Lettered:
+    """Lines of letters, as drawn.
+
+    Attributes:
+        letters: One Lettering a line; none where nothing fits.
+        left_out: The lines that fit nowhere; none where all stand.
+    """
+
+    letters: tuple[Lettering, ...]
+    left_out: tuple[Inscription, ...]
+
+
+def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> Lettered:
     """Lines of letters, as drawn: they read right on the side that is drawn.
 
     All lines stand together if they fit so and are easily read; if not, as many as do, and the rest
@@ -52,21 +65,7 @@ def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) ->
         rooms: Where there is room, as drawn.
         lines: What to write; a line gives way to those before it.
         rim_mm: The disc's radius.
-
-    Returns:
-        One Lettering a line; none where nothing fits.
     """
-    return _lettered(rooms, lines, rim_mm)[0]
-
-
-def without_room(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> tuple[Inscription, ...]:
-    """The lines that `lettering` leaves out, because they fit nowhere; none where all stand."""
-    return _lettered(rooms, lines, rim_mm)[1]
-
-
-def _lettered(
-    rooms: Rooms, lines: tuple[Inscription, ...], rim_mm: float
-) -> tuple[tuple[Lettering, ...], tuple[Inscription, ...]]:
     written: list[Lettering] = []
     missing: list[Inscription] = []
     left = list(lines)
@@ -75,7 +74,7 @@ def _lettered(
         written += placed
         missing += [] if placed else left[:1]
         left = left[max(len(placed), 1) :]
-    return tuple(written), tuple(missing)
+    return Lettered(letters=tuple(written), left_out=tuple(missing))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

@@ -1,6 +1,5 @@
 """What of the marks on a disc finds no room."""
 
-from layout.cut.inscribing import without_room
 from layout.cut.marking import marking_of
 from layout.cut.wording import Words, inscriptions
 from layout.place.disc import Disc
@@ -18,6 +17,6 @@ def marks_without_room(disc: Disc, words: Words) -> tuple[str, ...]:
     Returns:
         Names such as "index mark", "title", "order number"; none where all stand on the disc.
     """
-    marking, rim_mm = marking_of(disc), disc.movement.disc.outer_diameter_mm / 2
-    left_out = without_room(marking.rooms, inscriptions(disc, words), rim_mm=rim_mm)
+    marking = marking_of(disc)
+    left_out = marking.lettered(inscriptions(disc, words)).left_out
     return (*([INDEX_MARK] if marking.mark is None else []), *(line.name for line in left_out))

@@ -1,12 +1,14 @@
 """Where the marks of a disc stand: the index mark, and the room it leaves for letters."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import shapely
 
+from layout.cut.inscribing import Lettered, lettering
 from layout.cut.marks import index_mark
 from layout.cut.plan import Outlines
 from layout.cut.room import FreeMetal, Rooms
+from layout.cut.wording import Inscription
 from layout.place.disc import Disc
 
 
@@ -18,17 +20,30 @@ class Marking:
         mark: The index mark, seen from the label side; None where it has no room.
         rooms: The room beside it, as drawn.
         mirror: −1 where drawings show the star side, else +1.
+        rim_mm: The disc's radius.
     """
 
     mark: Outlines | None
     rooms: Rooms
     mirror: int
+    rim_mm: float
+    _lettered: dict[tuple[Inscription, ...], Lettered] = field(default_factory=dict, init=False, repr=False)
+
+    def lettered(self, lines: tuple[Inscription, ...]) -> Lettered:
+        """Lines of letters beside the mark: their places are sought once, for layout and drawing alike."""
+        if lines not in self._lettered:
+            self._lettered[lines] = lettering(self.rooms, lines, rim_mm=self.rim_mm)
+        return self._lettered[lines]
 
 
 def marking_of(disc: Disc) -> Marking:
-    """The index mark of a disc, and the room for letters on the side its cutter draws."""
+    """The index mark of a disc, and the room for letters on the side its cutter draws; found once."""
+    return disc.once(_marking_of)
+
+
+def _marking_of(disc: Disc) -> Marking:
     mirror = -1 if disc.cutter.drawn_from == "star-side" else 1
-    metal = FreeMetal(disc=disc)
-    mark = index_mark(metal, rim_mm=disc.movement.disc.outer_diameter_mm / 2, direction=disc.turning.direction)
+    metal, rim_mm = FreeMetal.of(disc), disc.movement.disc.outer_diameter_mm / 2
+    mark = index_mark(metal, rim_mm=rim_mm, direction=disc.turning.direction)
     taken = () if mark is None else (shapely.LineString(mark.points_mm[0]),)
-    return Marking(mark=mark, rooms=Rooms(metal=metal, taken=taken, mirror=mirror), mirror=mirror)
+    return Marking(mark=mark, rooms=Rooms(metal=metal, taken=taken, mirror=mirror), mirror=mirror, rim_mm=rim_mm)

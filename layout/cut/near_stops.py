@@ -17,23 +17,22 @@ _AT_A_TIME = 2000  # stops; all of 8,000 at a time take 30 MB, and no less time
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class NearStops:
-    """Pairs of a stop and one near it, ordered by the stop, its nearest first.
+    """The near neighbours of every stop, the nearest first.
 
     Attributes:
-        one: Shape (m,). The stop.
-        other: Shape (m,). The one near it.
-        away_mm: Shape (m,). How far they are from each other.
+        other: Shape (n, NEAR_STOPS). Which they are; any number where there are no more.
+        away_mm: Shape (n, NEAR_STOPS). How far they are; infinitely where there are no more.
     """
 
-    one: IntArray
     other: IntArray
     away_mm: FloatArray
 
-    def by_stop(self, count: int) -> list[list[tuple[int, float]]]:
-        """For each of `count` stops those near it and how far they are, the nearest first; empty for none."""
-        pairs = list(zip(self.other.tolist(), self.away_mm.tolist(), strict=True))
-        begins = np.searchsorted(self.one, np.arange(count + 1)).tolist()
-        return [pairs[begin:end] for begin, end in pairwise(begins)]
+    def by_stop(self) -> list[list[tuple[int, float]]]:
+        """For each stop those near it and how far they are, the nearest first; empty for none."""
+        found = np.isfinite(self.away_mm)
+        pairs = list(zip(self.other[found].tolist(), self.away_mm[found].tolist(), strict=True))
+        ends = np.cumsum(found.sum(axis=1)).tolist()
+        return [pairs[begin:end] for begin, end in pairwise([0, *ends])]
 
 
 def near_stops(places_mm: FloatArray, apart: IntArray) -> NearStops:
@@ -60,8 +59,7 @@ def near_stops(places_mm: FloatArray, apart: IntArray) -> NearStops:
             break
         left = left[away_mm[left, -1] > reach_mm]  # what is farther off may have one outside the box before it
         reach_mm *= 2
-    one, rank = np.nonzero(np.isfinite(away_mm))
-    return NearStops(one=one, other=near[one, rank], away_mm=away_mm[one, rank])
+    return NearStops(other=near, away_mm=away_mm)
 
 
 def _in_rows(row: IntArray, other: IntArray, shape: tuple[int, int]) -> IntArray:

@@ -4,7 +4,6 @@ from dataclasses import replace
 
 from layout.cut.blank import holes, rim
 from layout.cut.bridges import with_bridges
-from layout.cut.inscribing import lettering
 from layout.cut.kerf import as_the_beam_runs
 from layout.cut.leads import with_leads
 from layout.cut.marking import Marking, marking_of
@@ -99,8 +98,7 @@ def _cut(disc: Disc, order: IntArray) -> tuple[tuple[Entity, ...], int]:
 
 
 def _drawing(disc: Disc, marking: Marking, entities: tuple[Entity, ...], words: Words) -> Drawing:
-    rim_mm = disc.movement.disc.outer_diameter_mm / 2
-    letters = lettering(marking.rooms, inscriptions(disc, words), rim_mm=rim_mm)
+    letters = marking.lettered(inscriptions(disc, words)).letters
     marks = () if marking.mark is None else (marking.mark,)
     drawn = [_as_drawn(entity, marking.mirror) for entity in (*marks, *entities)]
     return Drawing(

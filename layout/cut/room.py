@@ -11,7 +11,12 @@ from shapely.geometry.base import BaseGeometry
 
 from layout.cut.blank import turned_mm
 from layout.documents.feature import Feature
+from layout.documents.movement import Movement
+from layout.mechanics.arrays import FloatArray, IntArray
+from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.projection import Pattern
 from layout.mechanics.spacing import core_geometries
+from layout.mechanics.turning import Turning
 from layout.place.disc import Disc
 
 # mm; common practice: an engraved line is 0.1 to 0.2 mm wide and lies within 0.1 mm of its place
@@ -26,16 +31,35 @@ class FreeMetal:
     Each part is worked out when it is first asked for, and kept: all that marks one disc asks for the same.
 
     Attributes:
-        disc: The disc.
+        movement: The disc's movement.
+        pattern: The flat pattern of its projections.
+        turning: The movement's turning in numbers.
+        track_index: Shape (n,). The track of each projection.
+        edge_angle_rad: Shape (n,). Its working edge.
     """
 
-    disc: Disc
+    movement: Movement
+    pattern: Pattern
+    turning: Turning
+    track_index: IntArray
+    edge_angle_rad: FloatArray
+
+    @staticmethod
+    def of(disc: Disc) -> "FreeMetal":
+        """The free metal of a disc; it does not hold on to that, which holds on to it."""
+        return FreeMetal(
+            movement=disc.movement,
+            pattern=disc.pattern,
+            turning=disc.turning,
+            track_index=disc.track_index,
+            edge_angle_rad=disc.edge_angle_rad,
+        )
 
     @property
     def tracks_mm(self) -> tuple[float, float]:
         """The band of the tracks: from the innermost opening's nearest point to the outermost's farthest."""
-        core_mm, round_mm = self.disc.pattern.core_points_mm, self.disc.pattern.core_round_mm
-        radius_mm = self.disc.turning.radius_mm
+        core_mm, round_mm = self.pattern.core_points_mm, self.pattern.core_round_mm
+        radius_mm = self.turning.radius_mm
         from_mm = float(radius_mm[0] + core_mm[:, 1].min()) - round_mm
         to_mm = float(np.hypot(radius_mm[-1] + core_mm[:, 1], core_mm[:, 0]).max()) + round_mm
         return max(from_mm, 0.0), to_mm
@@ -43,25 +67,34 @@ class FreeMetal:
     @cached_property
     def seen(self) -> BaseGeometry:
         """Clear of the tracks' band and the keep-out rings."""
-        rings = [_ring(ring.from_radius_mm, ring.to_radius_mm) for ring in self.disc.movement.keep_out]
+        rings = [_ring(ring.from_radius_mm, ring.to_radius_mm) for ring in self.movement.keep_out]
         return self._left(_ring(*self.tracks_mm), *rings)
 
     @cached_property
     def hidden(self) -> BaseGeometry:
         """Clear of the tracks' band; a clamp may hide it in the movement."""
-        return self._left(_ring(*self.tracks_mm)) if self.disc.movement.keep_out else self.seen
+        return self._left(_ring(*self.tracks_mm)) if self.movement.keep_out else self.seen
 
     @cached_property
     def between(self) -> BaseGeometry:
         """Clear of openings only."""
-        return self._left(_openings(self.disc))
+        return self._left(self._openings)
 
     @cached_property
     def _metal(self) -> BaseGeometry:
-        movement = self.disc.movement
-        taken = [place for feature in movement.disc.features for place in _taken(feature)]
-        whole = _ring(movement.disc.centre_hole_mm / 2, movement.disc.outer_diameter_mm / 2)
+        disc = self.movement.disc
+        taken = [place for feature in disc.features for place in _taken(feature)]
+        whole = _ring(disc.centre_hole_mm / 2, disc.outer_diameter_mm / 2)
         return whole.difference(shapely.union_all(taken))
+
+    @property
+    def _openings(self) -> BaseGeometry:
+        pattern, radius_mm = self.pattern, self.turning.radius_mm[self.track_index]
+        placed = radius_mm, self.edge_angle_rad, self.turning.direction
+        placed_mm = on_disc_mm(pattern.core_points_mm, *placed, pattern.strike_u_mm)
+        # A buffer's polygon lies inside the round end it stands for; its corners at 1/cos outside cover it.
+        round_mm = pattern.core_round_mm / math.cos(math.pi / (4 * _QUARTER_PIECES))
+        return shapely.union_all(shapely.buffer(core_geometries(placed_mm), round_mm, quad_segs=_QUARTER_PIECES))
 
     def _left(self, *without: BaseGeometry) -> BaseGeometry:
         return self._metal.difference(shapely.union_all(without)).buffer(-CLEAR_MM)
@@ -115,11 +148,3 @@ def _taken(feature: Feature) -> list[BaseGeometry]:
     half = np.array([feature.width_mm, feature.length_mm]) / 2
     corners = np.array([(1, 1), (-1, 1), (-1, -1), (1, -1)]) * half + np.array([feature.radius_mm, 0.0])
     return [shapely.Polygon(box) for box in turned_mm(corners, np.radians(feature.angles_deg))]
-
-
-def _openings(disc: Disc) -> BaseGeometry:
-    pattern = disc.pattern
-    placed_mm = disc.placed_mm(pattern.core_points_mm)
-    # A buffer's polygon lies inside the round end it stands for; its corners at 1/cos outside cover it.
-    round_mm = pattern.core_round_mm / math.cos(math.pi / (4 * _QUARTER_PIECES))
-    return shapely.union_all(shapely.buffer(core_geometries(placed_mm), round_mm, quad_segs=_QUARTER_PIECES))

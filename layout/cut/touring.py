@@ -1,33 +1,24 @@
 """A short round trip over many stops, some of which must not follow one another.
 
-A travelling salesman's round trip by well-known steps: a start along the ways that save most (G. Clarke and J. W.
-Wright, 1964), stretches reversed (2-opt, G. A. Croes, 1958), up to three stops moved elsewhere (Or-opt, I. Or,
-1976), both among near stops only; then two neighbouring stretches exchanged here and there and all mended round
-about, kept where that is shorter (iterated local search, H. R. Lourenço, O. C. Martin, T. Stützle, 2003). No dice and
-no clock: the same stops always give the same trip.
+A travelling salesman's round trip by well-known steps: the shortest ways first, then two or three ways at a time taken
+out and the stretches joined anew, then, of few stops, stretches exchanged on trial. No dice and no clock: the same
+stops always give the same trip.
 """
-
-import math
-from collections import deque
-from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, field
-from itertools import chain
 
 import numpy as np
 
 from layout.cut.first_trip import first_trip
+from layout.cut.mending import MendedTrip
 from layout.cut.near_stops import near_stops
-from layout.cut.ways import WaysMm, ways_mm
+from layout.cut.three_opt import Stops, shorten, stops_followed_by_what_must_not
+from layout.cut.trip import Trip
+from layout.cut.ways import ways_mm
 from layout.mechanics.arrays import FloatArray, IntArray, frozen_ints
 
-MOST_MOVED = 3  # stops moved together at once; as in Or's own work
-EXCHANGES_PER_STOP = 3  # stretches exchanged on trial; with 1 trips of few stops come out longer, with 5 not shorter
-MOST_EXCHANGES = 150  # stretches exchanged on trial; 20 ms, and three times as many gain 0.6 %
-EXCHANGES_BY_STOPS = 75_000  # over the stops: at 2,000 all 150 would gain 1 % and take half as long again
-LONGEST_STRETCH = 100  # stops that two exchanged stretches hold together; with 20 the trips come out 0.6 % longer
-LEAST_GAIN_MM = 1e-6  # mm; a nanometre, the grain of the stops
+MOST_EXCHANGES = 60  # stretches exchanged on trial: 10 ms; with none trips of 300 stops are 1 % longer, with 150 0.4 %
+EXCHANGES_PER_STOP = 3  # at most; with 1 trips of few stops come out longer, with 5 not shorter
+MOST_STOPS_SHAKEN = 1_000  # on more, so few exchanges gain nothing that can be measured
 _GRAIN_DIGITS = 6  # of a stop's place in mm: what processors round apart decides nothing
-_GOLDEN = (math.sqrt(5) - 1) / 2  # its multiples spread evenly over a turn (H. Weyl, 1916)
 
 
 def short_round_trip(stops_mm: FloatArray, apart: IntArray) -> IntArray:
@@ -47,21 +38,28 @@ def short_round_trip(stops_mm: FloatArray, apart: IntArray) -> IntArray:
         return frozen_ints(range(count))
     home = count
     places_mm = np.concatenate([stops_mm, np.zeros((1, 2))])
-    partners = _partners(apart, count + 1)
     near = near_stops(places_mm, apart)
-    near_mm = near.by_stop(count + 1)
-    trip = _Trip(
-        ways_mm=ways_mm(places_mm, partners, near_mm),
-        apart=partners,
-        near_mm=near_mm,
-        order=first_trip(places_mm, near),
-    )
-    trip.mend(list(trip.order))
-    for number in range(min(EXCHANGES_PER_STOP * count, MOST_EXCHANGES, EXCHANGES_BY_STOPS // count)):
-        trip.exchange(number)
+    trip = Trip(order=first_trip(places_mm, near))
+    stops = Stops.of(places_mm, near, apart)
+    shorten(trip, stops)
+    trip = Trip(order=[home, *_from(home, trip)])
+    unkept = stops_followed_by_what_must_not(trip, stops)
+    exchanges = min(EXCHANGES_PER_STOP * count, MOST_EXCHANGES) if count <= MOST_STOPS_SHAKEN else 0
+    if unkept or exchanges:
+        partners, near_mm = _partners(apart, count + 1), near.by_stop()
+        ways = ways_mm(places_mm, partners, near_mm)
+        trip = MendedTrip(order=trip.order, ways_mm=ways, apart=partners, near_mm=near_mm)
+        trip.mend(unkept)
+        for number in range(exchanges):
+            trip.exchange(number)
+    return frozen_ints(_from(home, trip))
+
+
+def _from(home: int, trip: Trip) -> list[int]:
+    """The stops from home on, the way round that begins with the lower of those beside it."""
     at = trip.order.index(home)
     order = trip.order[at + 1 :] + trip.order[:at]
-    return frozen_ints(order if order[0] <= order[-1] else order[::-1])
+    return order if order[0] <= order[-1] else order[::-1]
 
 
 def _partners(apart: IntArray, count: int) -> list[set[int]]:
@@ -70,179 +68,3 @@ def _partners(apart: IntArray, count: int) -> list[set[int]]:
         partners[one].add(other)
         partners[other].add(one)
     return partners
-
-
-@dataclass(slots=True, eq=False)
-class _Trip:
-    """A round trip that is being shortened.
-
-    A way round, `ahead`, is what added to a stop's place gives the place of the next stop that way: 1 − n along the
-    order, for a list of n counts from its end below 0, and −1 against it.
-    """
-
-    ways_mm: Sequence[WaysMm]
-    apart: list[set[int]]
-    near_mm: list[list[tuple[int, float]]]
-    order: list[int]
-    place: list[int] = field(default_factory=list)
-    gained_mm: float = 0.0
-
-    def __post_init__(self) -> None:
-        self.place = [0] * len(self.order)
-        for place, stop in enumerate(self.order):
-            self.place[stop] = place
-
-    def mend(self, stops: list[int]) -> None:
-        """Shorten the trip round some stops, and round all that this changes, till nothing more helps."""
-        waiting, queued = deque(stops), set(stops)
-        while waiting:
-            stop = waiting.popleft()
-            queued.discard(stop)
-            while changed := self._reverse_a_stretch(stop) or self._move_a_few(stop):
-                waiting.extend([one for one in changed if one not in queued])
-                queued.update(changed)
-
-    def exchange(self, number: int) -> None:
-        """Exchange two neighbouring stretches and mend; go back where the trip is no shorter for it."""
-        count = len(self.order)
-        longest = min(LONGEST_STRETCH, count - 2)
-        first = 1 + int(longest / 2 * (number * math.sqrt(2) % 1))
-        second = 1 + int(longest / 2 * (number * math.sqrt(3) % 1))
-        begin = int(count * (number * _GOLDEN % 1))
-        if first + second + 1 >= count:
-            return
-        steps = (0, 1, first, first + 1, first + second, first + second + 1)
-        a, b, c, d, e, last = ends = [self.order[(begin + step) % count] for step in steps]
-        before = self.order.copy(), self.place.copy()
-        self.gained_mm = 0.0
-        self._join(a, b, e, last)  # a [b … c] [d … e] last becomes a e … d c … b last
-        self._join(a, e, d, c)  # a d … e c … b last
-        self._join(e, c, b, last)  # a d … e b … c last
-        self.mend(list(dict.fromkeys(ends)))
-        if self.gained_mm <= LEAST_GAIN_MM:
-            self.order, self.place = before
-
-    def _reverse_a_stretch(self, a: int) -> tuple[int, ...]:
-        """2-opt at a stop: a–b and c–d become a–c and b–d. The stops it changes; none where nothing helps."""
-        order, place, ways_mm = self.order, self.place, self.ways_mm
-        at, from_a_mm, near_mm = place[a], ways_mm[a], self.near_mm[a]
-        nearest_mm = near_mm[0][1] if near_mm else math.inf
-        for ahead in (1 - len(order), -1):
-            b = order[at + ahead]
-            ab_mm, from_b_mm = from_a_mm[b] - LEAST_GAIN_MM, ways_mm[b]
-            if ab_mm <= nearest_mm:
-                continue
-            for c, ac_mm in self._all_for(a) if b in self.apart[a] else near_mm:
-                if ab_mm <= ac_mm:
-                    break
-                d = order[place[c] + ahead]
-                if a == d or b == c:
-                    continue
-                if ab_mm - ac_mm + ways_mm[c][d] > from_b_mm[d]:
-                    self._join(a, b, c, d)
-                    return a, b, c, d
-        return ()
-
-    def _all_for(self, a: int) -> Iterable[tuple[int, float]]:
-        """All stops that may come to stand beside a, the near ones first: for where what stands there must not stay."""
-        others = ((c, self.ways_mm[a][c]) for c in range(len(self.order)) if c != a and c not in self.apart[a])
-        return chain(self.near_mm[a], others)
-
-    def _move_a_few(self, a: int) -> tuple[int, ...]:
-        """Or-opt at a stop: a and up to two stops beside it move to where a stands beside a near stop."""
-        ways_mm, near_mm = self.ways_mm, self.near_mm[a]
-        before, after = self._beside(a)
-        if not near_mm or not before:
-            return ()
-        nearest_mm = near_mm[0][1]
-        along, against = 1 - len(self.order), -1
-        for p, following, ahead in ((before[0], after, along), (after[0], before, against)):
-            e, from_p_mm, from_e_mm = a, ways_mm[p], ways_mm[a]
-            pa_mm = from_e_mm[p]
-            for moved, q in enumerate(following, start=1):
-                gain_mm = pa_mm + from_e_mm[q] - from_p_mm[q] - LEAST_GAIN_MM
-                if gain_mm > nearest_mm:
-                    found = self._place_for([a, *following[: moved - 1]], q, gain_mm, ahead)
-                    if found:
-                        c, d, turned = found
-                        self._move((p, a, e, q), c, d, turned=turned)
-                        return p, a, e, q, c, d
-                e, from_e_mm = q, ways_mm[q]
-        return ()
-
-    def _beside(self, a: int) -> tuple[list[int], list[int]]:
-        """The MOST_MOVED stops before a stop and after it, the next ones first; fewer or none on a trip of very few."""
-        order, at, count = self.order, self.place[a], len(self.order)
-        if MOST_MOVED <= at < count - MOST_MOVED:
-            before, after = order[at - MOST_MOVED : at], order[at + 1 : at + MOST_MOVED + 1]
-            before.reverse()
-            return before, after
-        steps = range(1, min(MOST_MOVED, count - 3) + 1)
-        return [order[at - step] for step in steps], [order[at + step - count] for step in steps]
-
-    def _place_for(self, moved: list[int], q: int, gain_mm: float, ahead: int) -> tuple[int, int, bool] | None:
-        """Two stops beside each other between which the moved ones cost less than `gain_mm`; None where none are.
-
-        Args:
-            moved: From the first, which is to stand beside the first of the two, to the last, before q.
-            q: The stop after them.
-            gain_mm: What is gained where they are taken out.
-            ahead: The way round from the first to q.
-
-        Returns:
-            The two stops, and whether the second is ahead of the first.
-        """
-        order, place, ways_mm = self.order, self.place, self.ways_mm
-        a, from_e_mm = moved[0], ways_mm[moved[-1]]
-        behind = -len(order) - ahead
-        for c, ca_mm in self.near_mm[a]:
-            if gain_mm <= ca_mm:
-                break
-            if c in moved:
-                continue
-            for side in (ahead, behind):
-                d = order[place[c] + side]
-                if d not in moved and gain_mm - ca_mm > from_e_mm[d] - ways_mm[c][d]:
-                    return c, d, side == ahead
-        return None
-
-    def _move(self, run: tuple[int, int, int, int], c: int, d: int, *, turned: bool) -> None:
-        """Move the stops from a to e, which stand between p and q, between c and d, so that a stands beside c."""
-        p, a, e, q = run
-        if not turned:
-            c, d = d, c
-        self._join(p, a, c, d)  # p a … e q … c d becomes p c … q e … a d
-        self._join(p, c, q, e)  # p q … c e … a d
-        if turned:
-            self._join(c, e, a, d)  # p q … c a … e d
-
-    def _join(self, a: int, b: int, c: int, d: int) -> None:
-        """Turn a–b and c–d into a–c and b–d, where b comes after a and d after c, both one way round."""
-        order, place = self.order, self.place
-        from_a_mm, from_d_mm = self.ways_mm[a], self.ways_mm[d]
-        self.gained_mm += from_a_mm[b] + from_d_mm[c] - from_a_mm[c] - from_d_mm[b]
-        if order[place[a] + 1 - len(order)] == b:
-            self._turn_round(place[b], place[c])
-        else:
-            self._turn_round(place[a], place[d])
-
-    def _turn_round(self, begin: int, end: int) -> None:
-        """Reverse the stops from one place of the order to another; or all others, which is the same round trip."""
-        order, place, count = self.order, self.place, len(self.order)
-        inside = (end - begin) % count + 1
-        if 2 * inside > count:
-            begin, end, inside = (end + 1) % count, (begin - 1) % count, count - inside
-        if inside <= 1:
-            return
-        if begin < end:
-            turned = order[begin : end + 1]
-            turned.reverse()
-            order[begin : end + 1] = turned
-            for at, stop in enumerate(turned, begin):
-                place[stop] = at
-        else:
-            turned = order[begin:] + order[: end + 1]
-            turned.reverse()
-            order[begin:], order[: end + 1] = turned[: count - begin], turned[count - begin :]
-            for at, stop in enumerate(turned, begin):
-                place[stop] = at % count

@@ -1,6 +1,8 @@
 """What placing gives: the disc, as working edges on tracks."""
 
+from collections.abc import Callable
 from dataclasses import dataclass, field
+from typing import TypeVar, cast
 
 import numpy as np
 
@@ -15,6 +17,8 @@ from layout.mechanics.projection import Pattern
 from layout.mechanics.star_wheel import touch_zone_mm
 from layout.mechanics.torque import TurnTorque, torque_over_turn
 from layout.mechanics.turning import Turning
+
+Told = TypeVar("Told")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -37,11 +41,13 @@ class Disc:
     pattern: Pattern
     track_index: IntArray
     edge_angle_rad: FloatArray
-    _metal_left: list[MetalLeft | None] = field(default_factory=list, init=False, repr=False)
-    _openings: list[Openings] = field(default_factory=list, init=False, repr=False)
-    _reach_mm: list[tuple[tuple[float, float], ...]] = field(default_factory=list, init=False, repr=False)
-    _touch_zones_mm: list[FloatArray] = field(default_factory=list, init=False, repr=False)
-    _torque: list[TurnTorque | None] = field(default_factory=list, init=False, repr=False)
+    _worked_out: dict[Callable[["Disc"], object], object] = field(default_factory=dict, init=False, repr=False)
+
+    def once(self, work_out: Callable[["Disc"], Told]) -> Told:
+        """What a function tells of the disc: worked out when it is first asked for, and kept for all that ask."""
+        if work_out not in self._worked_out:
+            self._worked_out[work_out] = work_out(self)
+        return cast(Told, self._worked_out[work_out])
 
     @property
     def projection_count(self) -> int:
@@ -72,48 +78,56 @@ class Disc:
 
     @property
     def metal_left(self) -> MetalLeft | None:
-        """The least metal the openings leave, as `net_section` finds it: once, for check and report alike."""
-        if not self._metal_left:
-            features = self.movement.disc.features
-            self._metal_left.append(
-                metal_left(self.pattern, self.turning, self.track_index, self.edge_angle_rad, features)
-            )
-        return self._metal_left[0]
+        """The least metal the openings leave, as `net_section` finds it."""
+        return self.once(_metal_left)
 
     @property
     def openings(self) -> Openings:
-        """The openings of all projections, made once for all that look at them."""
-        if not self._openings:
-            points_mm = self.placed_mm(self.pattern.core_points_mm)
-            self._openings.append(openings_at(points_mm, self.pattern.core_round_mm))
-        return self._openings[0]
+        """The openings of all projections."""
+        return self.once(_openings)
 
     @property
     def reach_mm(self) -> tuple[tuple[float, float], ...]:
-        """For every track the least and greatest distance of its openings from the centre, found once."""
-        if not self._reach_mm:
-            self._reach_mm.append(tuple(radial_reach_mm(self.turning, self.pattern)))
-        return self._reach_mm[0]
+        """For every track the least and greatest distance of its openings from the centre."""
+        return self.once(_reach_mm)
 
     @property
     def touch_zones_mm(self) -> FloatArray:
-        """Shape (tracks, 2). For every track what `touch_zone_mm` tells, found once for tracks that state alike."""
-        if not self._touch_zones_mm:
-            arcs = [(track.engagement_arc_mm, track.release_arc_mm) for track in self.movement.tracks]
-            zones = {each: touch_zone_mm(self.movement, arcs.index(each)) for each in set(arcs)}
-            self._touch_zones_mm.append(frozen_floats(np.array([zones[each] for each in arcs])))
-        return self._touch_zones_mm[0]
+        """Shape (tracks, 2). For every track what `touch_zone_mm` tells."""
+        return self.once(_touch_zones_mm)
 
     @property
     def torque(self) -> TurnTorque | None:
-        """The teeth's torque over the turn, as `torque_over_turn` finds it: once, for check and report alike."""
-        if not self._torque:
-            sounds_s = self.turning.sounds_s(self.edge_angle_rad, self.track_index)
-            self._torque.append(torque_over_turn(self.movement, self.turning, self.track_index, sounds_s))
-        return self._torque[0]
+        """The teeth's torque over the turn, as `torque_over_turn` finds it."""
+        return self.once(_torque)
 
     @property
     def used_tracks(self) -> list[int]:
         """Places of the tracks that carry a projection, from 0, in rising order."""
         used: list[int] = np.unique(self.track_index).tolist()
         return used
+
+
+def _metal_left(disc: Disc) -> MetalLeft | None:
+    features = disc.movement.disc.features
+    return metal_left(disc.pattern, disc.turning, disc.track_index, disc.edge_angle_rad, features)
+
+
+def _openings(disc: Disc) -> Openings:
+    return openings_at(disc.placed_mm(disc.pattern.core_points_mm), disc.pattern.core_round_mm)
+
+
+def _reach_mm(disc: Disc) -> tuple[tuple[float, float], ...]:
+    return tuple(radial_reach_mm(disc.turning, disc.pattern))
+
+
+def _touch_zones_mm(disc: Disc) -> FloatArray:
+    """Found once for all tracks that state alike."""
+    arcs = [(track.engagement_arc_mm, track.release_arc_mm) for track in disc.movement.tracks]
+    zones = {each: touch_zone_mm(disc.movement, arcs.index(each)) for each in set(arcs)}
+    return frozen_floats(np.array([zones[each] for each in arcs]))
+
+
+def _torque(disc: Disc) -> TurnTorque | None:
+    sounds_s = disc.turning.sounds_s(disc.edge_angle_rad, disc.track_index)
+    return torque_over_turn(disc.movement, disc.turning, disc.track_index, sounds_s)

@@ -1,4 +1,4 @@
-"""A round trip by the steps of layout/cut/touring.py, told plainly: one stop swapped at a time, nothing remembered."""
+"""A round trip by the steps of layout/cut, told plainly: one stop or way at a time, nothing remembered."""
 
 import math
 from collections import deque
@@ -7,15 +7,10 @@ from itertools import chain
 import numpy as np
 
 from layout.cut.first_trip import first_trip
+from layout.cut.mending import LONGEST_STRETCH, MOST_MOVED
 from layout.cut.near_stops import near_stops
-from layout.cut.touring import (
-    EXCHANGES_BY_STOPS,
-    EXCHANGES_PER_STOP,
-    LEAST_GAIN_MM,
-    LONGEST_STRETCH,
-    MOST_EXCHANGES,
-    MOST_MOVED,
-)
+from layout.cut.three_opt import LEAST_GAIN_MM, NONE
+from layout.cut.touring import EXCHANGES_PER_STOP, MOST_EXCHANGES, MOST_STOPS_SHAKEN
 from layout.mechanics.arrays import FloatArray, IntArray
 
 _NOT_NEXT_MM = 1e7
@@ -28,13 +23,14 @@ def plain_round_trip(stops_mm: FloatArray, pairs: IntArray) -> list[int]:
     count = len(stops_mm)
     places_mm = np.concatenate([stops_mm, np.zeros((1, 2))])
     near = near_stops(places_mm, pairs)
-    trip = _PlainTrip(places_mm.tolist(), pairs, near.by_stop(count + 1), first_trip(places_mm, near))
-    trip.mend(list(trip.order))
-    for number in range(min(EXCHANGES_PER_STOP * count, MOST_EXCHANGES, EXCHANGES_BY_STOPS // count)):
-        trip.exchange(number)
-    at = trip.order.index(count)
-    order = trip.order[at + 1 :] + trip.order[:at]
-    return order if order[0] <= order[-1] else order[::-1]
+    trip = _PlainTrip(places_mm.tolist(), pairs, near.by_stop(), first_trip(places_mm, near))
+    trip.shorten()
+    trip.order = [count, *trip.from_home()]
+    trip.mend([one for one in trip.order if (one, trip.beside(one, 1)) in trip.apart])
+    if count <= MOST_STOPS_SHAKEN:
+        for number in range(min(EXCHANGES_PER_STOP * count, MOST_EXCHANGES)):
+            trip.exchange(number)
+    return trip.from_home()
 
 
 class _PlainTrip:
@@ -51,6 +47,59 @@ class _PlainTrip:
 
     def beside(self, stop: int, steps: int) -> int:
         return self.order[(self.order.index(stop) + steps) % len(self.order)]
+
+    def from_home(self) -> list[int]:
+        at = self.order.index(len(self.order) - 1)
+        order = self.order[at + 1 :] + self.order[:at]
+        return order if order[0] <= order[-1] else order[::-1]
+
+    def shorten(self) -> None:
+        looked_at = set(self.order)
+        while looked_at:
+            best = [max(moves) for a in looked_at if (moves := self.moves_from(a))]
+            looked_at = set()
+            for _, negated in sorted(best, reverse=True):
+                move = tuple(-stop for stop in negated if stop != -NONE)
+                after = self.after(move)
+                looked_at.update(move if after else move[:1])
+                self.order = after or self.order
+
+    def moves_from(self, a: int) -> list[tuple[float, tuple[int, ...]]]:
+        """Gains and moves: a–b, c–d to b–c, d–a, or a–b, c–d, e–f to b–c, d–e, f–a. Negated: the least is the most."""
+        found = []
+        for b in {self.beside(a, 1), self.beside(a, -1)}:
+            for c, bc_mm in self.near[b]:
+                for d in {self.beside(c, 1), self.beside(c, -1)} - {a} if bc_mm < self.way_mm(a, b) else ():
+                    gain_mm = self.way_mm(a, b) - bc_mm + self.way_mm(c, d)
+                    found.append((gain_mm - self.way_mm(d, a), (a, b, c, d)))
+                    for e, de_mm in self.near[d]:
+                        if de_mm < gain_mm - LEAST_GAIN_MM:
+                            for f in {self.beside(e, 1), self.beside(e, -1)}:
+                                longer_mm = gain_mm - de_mm + self.way_mm(e, f)
+                                found.append((longer_mm - self.way_mm(f, a), (a, b, c, d, e, f)))
+        return [
+            (gain_mm, tuple(-stop for stop in (*move, NONE, NONE)[:6]))
+            for gain_mm, move in found
+            if gain_mm > LEAST_GAIN_MM and self.after(move)
+        ]
+
+    def after(self, move: tuple[int, ...]) -> list[int] | None:
+        """The trip after a move; None where its ways are not there, or what comes is no round trip."""
+        begins, ends = move[::2], move[1::2]
+        gone = [frozenset(way) for way in zip(begins, ends, strict=True)]
+        come = [frozenset(way) for way in zip(ends, begins[1:] + begins[:1], strict=True)]
+        ways = [frozenset((one, self.beside(one, 1))) for one in self.order]
+        are_others = len({*gone, *come}) == len(move) and all(len(way) > 1 for way in come)
+        if not are_others or not set(gone) <= set(ways) or set(come) & set(ways):
+            return None
+        beside: dict[int, list[int]] = {stop: [] for stop in self.order}
+        for one, other in [tuple(way) for way in ways if way not in gone] + [tuple(way) for way in come]:
+            beside[one].append(other)
+            beside[other].append(one)
+        walked = [self.order[0]]
+        while onward := [stop for stop in beside[walked[-1]] if stop not in walked]:
+            walked.append(onward[0])
+        return walked if len(walked) == len(self.order) else None
 
     def mend(self, stops: list[int]) -> None:
         waiting, queued = deque(stops), set(stops)
