@@ -128,9 +128,14 @@ def _strokes(entity: Entity) -> Iterator[_Strokes]:
             start_mm = entity.centres_mm + np.column_stack([entity.radius_mm, np.zeros(len(entity.radius_mm))])
             yield _Strokes(start_mm=start_mm, end_mm=start_mm, length_mm=2 * np.pi * entity.radius_mm)
         case Lettering():
-            for stroke in entity.strokes_mm:
-                length_mm = np.hypot(*np.diff(stroke, axis=0).T).sum(keepdims=True)
-                yield _Strokes(start_mm=stroke[:1], end_mm=stroke[-1:], length_mm=length_mm)
+            last = np.cumsum([len(stroke) for stroke in entity.strokes_mm]) - 1
+            first = np.concatenate([[0], last[:-1] + 1])
+            points_mm = np.concatenate(entity.strokes_mm)
+            along_mm = np.hypot(*np.diff(points_mm, axis=0, append=points_mm[-1:]).T)
+            along_mm[last] = 0.0  # from one stroke to the next nothing is marked
+            yield _Strokes(
+                start_mm=points_mm[first], end_mm=points_mm[last], length_mm=np.add.reduceat(along_mm, first)
+            )
         case Points():
             return
 

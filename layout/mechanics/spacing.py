@@ -14,13 +14,13 @@ import shapely
 from numpy.typing import NDArray
 
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, frozen_floats
+from layout.mechanics.arrays import FloatArray, IntArray, frozen_floats
 from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.halving import HALVINGS, least_enough
 from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 MOST_TRACKS_APART = 6  # tracks; openings that reach past six neighbours are a movement no web can be kept on
-_HALVINGS = 50  # of an interval under one turn: ends below 1e-14 rad, the grain of a double
 _RING_GRAIN_MM = 1e-6  # so much farther apart than a web two rings must be before rounding does not matter
 _SCAN_STEPS = 400  # places tried over the stretch where two openings can pass each other
 
@@ -127,14 +127,15 @@ def _between_mm(pattern: Pattern, one: NDArray[np.object_], two: NDArray[np.obje
 
 def _web_angles_rad(turning: Turning, pattern: Pattern, min_web_mm: float) -> FloatArray:
     radius_mm = turning.radius_mm
-    low = np.zeros(len(radius_mm))
-    high = np.full(len(radius_mm), math.pi)
-    here = _cores(turning, pattern, radius_mm, low)
-    for _ in range(_HALVINGS):
-        middle = (low + high) / 2
-        enough = _between_mm(pattern, here, _cores(turning, pattern, radius_mm, middle)) >= min_web_mm
-        high, low = np.where(enough, middle, high), np.where(enough, low, middle)
-    return high
+    here = _cores(turning, pattern, radius_mm, np.zeros(len(radius_mm)))
+
+    def spare_mm(tracks: IntArray, angle_rad: FloatArray) -> FloatArray:
+        there = _cores(turning, pattern, radius_mm[tracks], angle_rad)
+        return _between_mm(pattern, here[tracks], there) - min_web_mm
+
+    chord_mm = np.minimum(_reach_mm(pattern, 0) + min_web_mm, 2 * radius_mm)
+    chord_rad = 2 * np.arcsin(chord_mm / (2 * radius_mm))
+    return least_enough(spare_mm, np.full(len(radius_mm), math.pi), (chord_rad, np.minimum(1.05 * chord_rad, math.pi)))
 
 
 def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tuple[TooNear, ...]:
@@ -196,7 +197,7 @@ def _edges_rad(
     inner_mm, outer_mm = turning.radius_mm[np.array([end[:2] for end in ends]).T]
     here = _cores(turning, pattern, inner_mm, np.zeros(len(ends)))
     good_rad, bad_rad = np.array([end[2] for end in ends]), np.array([end[3] for end in ends])
-    for _ in range(_HALVINGS):
+    for _ in range(HALVINGS):
         middle = (good_rad + bad_rad) / 2
         enough = _between_mm(pattern, here, _cores(turning, pattern, outer_mm, middle)) >= min_web_mm
         good_rad, bad_rad = np.where(enough, middle, good_rad), np.where(enough, bad_rad, middle)

@@ -1,12 +1,7 @@
 """A drawing as a DXF file, entity by entity in cutting order."""
 
-from collections.abc import Sequence
-
-import numpy as np
-
 from layout.cut.plan import Circles, Drawing, Entity, Lettering, Outlines, Points
 from layout.documents.cutter import Cutter
-from layout.mechanics.arrays import FloatArray
 from layout.write.dxf_document import bytes_of, new_document
 from layout.write.dxf_entities import APP_ID, Entities, entities_of
 from layout.write.extents import extents_mm
@@ -56,18 +51,4 @@ def _add(entities: Entities, entity: Entity, layer: str) -> None:
         case Points():
             entities.add_points(layer, rounded(entity.points_mm))
         case Lettering():
-            add_strokes(entities, layer, [rounded(stroke) for stroke in entity.strokes_mm], entity.text)
-
-
-def add_strokes(entities: Entities, layer: str, strokes_mm: Sequence[FloatArray], text: str) -> None:
-    """Lettering as open lines, the first of which carries the words.
-
-    Args:
-        entities: What takes them.
-        layer: The name of their layer in the file.
-        strokes_mm: The strokes, each of shape (k, 2), rounded.
-        text: What they say.
-    """
-    for place, stroke in enumerate(strokes_mm):
-        words = text if place == 0 else ""
-        entities.add_polylines(layer, stroke[np.newaxis], np.zeros(len(stroke)), closed=False, words=words)
+            entities.add_strokes(layer, [rounded(stroke) for stroke in entity.strokes_mm], entity.text)

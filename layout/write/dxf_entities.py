@@ -7,6 +7,7 @@ entities is ezdxf's own work in either case.
 
 import math
 from collections.abc import Sequence
+from itertools import accumulate, pairwise
 from typing import Protocol
 
 import numpy as np
@@ -40,8 +41,11 @@ class Entities(Protocol):
             points_mm: Shape (n, k, 2); n of 0 adds nothing.
             bulges: Shape (k,). Of the piece that starts at each vertex.
             closed: Whether the last vertex joins the first.
-            words: What lettering says that begins with it, as extended data; "" for none.
+            words: What it carries as extended data; "" for none.
         """
+
+    def add_strokes(self, layer: str, strokes_mm: Sequence[FloatArray], words: str) -> None:
+        """Lettering as open lines, each of shape (k, 2), the first of which carries its words as extended data."""
 
     def add_circles(self, layer: str, centres_mm: FloatArray, radius_mm: Sequence[float]) -> None:
         """Circles: shape (n, 2), and n radii."""
@@ -73,6 +77,12 @@ class LibraryEntities:
             line = self._polyline(vertices, {"layer": layer}, closed=closed)
             if words:
                 line.set_xdata(APP_ID, [(_STRING, dxf_text(words, MOST_DXF_STRING))])
+
+    def add_strokes(self, layer: str, strokes_mm: Sequence[FloatArray], words: str) -> None:
+        """See Entities."""
+        for place, stroke in enumerate(strokes_mm):
+            straight, said = np.zeros(len(stroke)), words if place == 0 else ""
+            self.add_polylines(layer, stroke[np.newaxis], straight, closed=False, words=said)
 
     def add_circles(self, layer: str, centres_mm: FloatArray, radius_mm: Sequence[float]) -> None:
         """See Entities."""
@@ -114,8 +124,21 @@ class WrittenEntities(EntitySection):
         curves = ["" if bulge == 0 else f" 42\n{bulge!r}\n" for bulge in bulges.tolist()]
         vertices = "".join(f" 10\n%s\n 20\n%s\n{curve}" for curve in curves)
         shape = f" 90\n{len(curves)}\n 70\n{int(closed)}\n{vertices}"
-        said = f"1001\n{APP_ID}\n{_STRING}\n{dxf_text(words, MOST_DXF_STRING)}\n" if words else ""
-        self._add("LWPOLYLINE", "AcDbPolyline", layer, shape + said.replace("%", "%%"), points_mm)
+        self._add("LWPOLYLINE", "AcDbPolyline", layer, shape + _said(words).replace("%", "%%"), points_mm)
+
+    def add_strokes(self, layer: str, strokes_mm: Sequence[FloatArray], words: str) -> None:
+        """See Entities."""
+        if not strokes_mm:
+            return
+        vertices = [f" 10\n{x}\n 20\n{y}\n" for x, y in as_repr(np.concatenate(strokes_mm))]
+        head = self._head("LWPOLYLINE", "AcDbPolyline", layer)
+        handle, said = int(str(self._handles), _HEXADECIMAL), _said(words)
+        ends = [0, *accumulate(len(stroke) for stroke in strokes_mm)]
+        for place, (begin, end) in enumerate(pairwise(ends)):
+            stroke = "".join(vertices[begin:end])
+            self._text.append(f"{head % (handle + place)} 90\n{end - begin}\n 70\n0\n{stroke}{said}")
+            said = ""
+        self._handles.reset(f"{handle + len(strokes_mm):X}")
 
     def add_circles(self, layer: str, centres_mm: FloatArray, radius_mm: Sequence[float]) -> None:
         """See Entities."""
@@ -148,11 +171,19 @@ class WrittenEntities(EntitySection):
 
     def _add(self, kind: str, subclass: str, layer: str, shape: str, numbers: FloatArray) -> None:
         """Add one entity for each row of numbers, in the order in which they stand in the shape."""
-        on_layer = layer.replace("%", "%%")
-        form = f"  0\n{kind}\n  5\n%X\n330\n{self._owner}\n100\nAcDbEntity\n  8\n{on_layer}\n100\n{subclass}\n{shape}"
+        form = self._head(kind, subclass, layer) + shape
         rows = numbers.reshape(len(numbers), math.prod(numbers.shape[1:]))
         handle = int(str(self._handles), _HEXADECIMAL)
         for begin in range(0, len(rows), _AT_A_TIME):
             some = as_repr(rows[begin : begin + _AT_A_TIME])
             self._text.append("".join([form % (handle + place, *row) for place, row in enumerate(some, begin)]))
         self._handles.reset(f"{handle + len(rows):X}")
+
+    def _head(self, kind: str, subclass: str, layer: str) -> str:
+        """What an entity begins with, its handle left open."""
+        on_layer = layer.replace("%", "%%")
+        return f"  0\n{kind}\n  5\n%X\n330\n{self._owner}\n100\nAcDbEntity\n  8\n{on_layer}\n100\n{subclass}\n"
+
+
+def _said(words: str) -> str:
+    return f"1001\n{APP_ID}\n{_STRING}\n{dxf_text(words, MOST_DXF_STRING)}\n" if words else ""

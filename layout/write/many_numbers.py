@@ -5,6 +5,9 @@ which Python takes 17. Only where Python writes powers of ten do the two differ;
 a block of numbers in which one is takes the slower way.
 """
 
+from collections.abc import Sequence
+from itertools import accumulate, pairwise
+
 import numpy as np
 import orjson
 
@@ -37,6 +40,19 @@ def lines_as_data(lines_mm: FloatArray) -> str:
         return "".join("M" + "L".join(f"{number(x)} {number(y)}" for x, y in line) for line in lines_mm.tolist())
     whole = _json(lines_mm).replace(".0,", ",").replace(".0]", "]")  # a whole number ends at its last digit
     return "M" + whole[3:-3].replace("]],[[", "M").replace("],[", "L").replace(",", " ")
+
+
+def strokes_as_data(strokes_mm: Sequence[FloatArray]) -> str:
+    """As `lines_as_data` of lines of several lengths.
+
+    Args:
+        strokes_mm: Each of shape (k, 2), k above 0, rounded as they are to be written; no strokes give "".
+    """
+    if not strokes_mm:
+        return ""
+    points = lines_as_data(np.concatenate(strokes_mm)[np.newaxis])[1:].split("L")
+    ends = [0, *accumulate(len(stroke) for stroke in strokes_mm)]
+    return "".join("M" + "L".join(points[begin:end]) for begin, end in pairwise(ends))
 
 
 def _is_plain(values: FloatArray) -> bool:

@@ -11,7 +11,7 @@ from layout.mechanics.arrays import FloatArray
 from layout.mechanics.drawn import DrawnArc, DrawnCircle, DrawnDisc, DrawnEntity, DrawnLine, DrawnPoint
 from layout.mechanics.lettering import strokes_mm
 from layout.sheets.plan import DiscKind, Sheet, SheetPlan
-from layout.write.dxf import UNIT_SAID, add_strokes
+from layout.write.dxf import UNIT_SAID
 from layout.write.dxf_document import Release, bytes_of, new_document
 from layout.write.dxf_entities import APP_ID, Entities, entities_of
 from layout.write.numbers import DECIMALS_BULGE, rounded
@@ -57,7 +57,7 @@ def write_sheet_dxf(plan: SheetPlan, number: int) -> bytes:
     for kind, centre_mm, radius_mm, label in placed:
         if label is not None:
             strokes = [rounded(stroke + label.at_mm) for stroke in strokes_mm(label.text, label.height_mm)]
-            add_strokes(entities, names[MARKS], strokes, label.text)
+            entities.add_strokes(names[MARKS], strokes, label.text)
         drawn = plan.kinds[kind].drawing
         if drawn is None:
             entities.add_circles(names[RIM], centre_mm[np.newaxis], [radius_mm])

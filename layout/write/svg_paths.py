@@ -7,7 +7,7 @@ import numpy as np
 
 from layout.cut.plan import Circles, Entity, Lettering, Outlines, Points
 from layout.mechanics.arrays import FloatArray
-from layout.write.many_numbers import lines_as_data
+from layout.write.many_numbers import lines_as_data, strokes_as_data
 from layout.write.numbers import DECIMALS_RADIUS, number, rounded
 
 
@@ -22,7 +22,7 @@ def path_data(entities: list[Entity]) -> str:
             case Outlines():
                 parts += _outlines(entity)
             case Lettering():
-                parts += [_open_line(rounded(stroke * (1, -1)).tolist()) for stroke in entity.strokes_mm]
+                parts.append(strokes_as_data([rounded(stroke * (1, -1)) for stroke in entity.strokes_mm]))
             case Points():
                 parts += [f"M{number(x)} {number(y)}h0" for x, y in rounded(entity.points_mm * (1, -1)).tolist()]
     return "".join(parts)
@@ -70,10 +70,6 @@ def circles(entities: list[Entity]) -> Iterator[tuple[str, str, str]]:
 def lines_data(ends_mm: FloatArray) -> str:
     """SVG path data of straight lines given as shape (n, 2, 2), in drawing coordinates."""
     return lines_as_data(rounded(ends_mm * (1, -1)))
-
-
-def _open_line(points: list[list[float]]) -> str:
-    return "M" + "L".join(f"{number(x)} {number(y)}" for x, y in points)
 
 
 def _outlines(outlines: Outlines) -> Iterator[str]:

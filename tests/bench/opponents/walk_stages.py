@@ -91,7 +91,7 @@ def stages_of(tune: bytes, movement: Movement, cutter: Cutter) -> dict[str, Job]
         "all checks": lambda: check(replace(disc), arrangement, whole),
         "report": lambda: report_on(score, arrangement, disc),
         "fingerprint": lambda: fingerprint_of(tune, movement, cutter, settings),
-        "labels without room": lambda: marks_without_room(disc, words),
+        "labels without room": lambda: marks_without_room(replace(disc), words),
         "order of cuts, marks": lambda: planned(laid_out),
         "making": lambda: making_of(disc, plan),
         "disc.dxf": lambda: write_dxf(plan.disc, cutter),

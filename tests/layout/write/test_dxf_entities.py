@@ -61,7 +61,14 @@ def points(draw: st.DrawFn) -> Added:
     return lambda entities: entities.add_points(layer, np.array(rows, dtype=np.float64).reshape(-1, 2))
 
 
-@given(st.lists(st.one_of(polylines(), circles(), arcs(), points()), max_size=5))
+@st.composite
+def strokes(draw: st.DrawFn) -> Added:
+    lines = draw(st.lists(st.lists(st.tuples(mm, mm), min_size=1, max_size=6), max_size=4))
+    layer, words = draw(st.sampled_from(LAYERS)), draw(st.sampled_from(WORDS))
+    return lambda entities: entities.add_strokes(layer, [np.array(line, dtype=np.float64) for line in lines], words)
+
+
+@given(st.lists(st.one_of(polylines(), circles(), arcs(), points(), strokes()), max_size=5))
 def test_entities_of_every_kind_are_written_as_ezdxf_writes_them(added: list[Added]) -> None:
     assert written_by(WrittenEntities, *added) == written_by(LibraryEntities, *added)
 

@@ -4,7 +4,7 @@ import numpy as np
 from hypothesis import given
 from hypothesis import strategies as st
 
-from layout.write.many_numbers import as_repr, lines_as_data
+from layout.write.many_numbers import as_repr, lines_as_data, strokes_as_data
 from layout.write.numbers import number, rounded
 
 # Whole ones, coordinates as a file has them, and doubles of every size.
@@ -38,4 +38,16 @@ def test_lines_are_written_with_each_number_as_it_is_by_itself(lines: list[list[
     written = lines_as_data(lines_mm)
 
     each = ("M" + "L".join(f"{number(x)} {number(y)}" for x, y in line) for line in lines_mm.tolist())
+    assert written == "".join(each)
+
+
+@given(st.lists(st.lists(st.tuples(NUMBERS, NUMBERS), min_size=1, max_size=4), max_size=4))
+def test_strokes_of_any_lengths_are_written_with_each_number_as_it_is_by_itself(
+    strokes: list[list[tuple[float, float]]],
+) -> None:
+    strokes_mm = [rounded(np.clip(np.array(stroke, dtype=np.float64), -1e6, 1e6)) for stroke in strokes]
+
+    written = strokes_as_data(strokes_mm)
+
+    each = ("M" + "L".join(f"{number(x)} {number(y)}" for x, y in stroke.tolist()) for stroke in strokes_mm)
     assert written == "".join(each)
