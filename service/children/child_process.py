@@ -11,7 +11,7 @@ from service.children.frames import BrokenFrameError, FrameReader, frame_of, wri
 
 WARM_WITHIN_S = 120.0  # s; the imports take two on an idle machine
 LOOK_EVERY_S = 0.2  # s; how soon a child is killed that shall go on no longer
-ENDING_S = 2.0  # s; between the end of a child's pipe and its own
+ENDING_S = 10.0  # s; between the end of a child's pipe and its own: on a machine that stood still, more than two
 # There are as many children as processors, so each computes in one thread. Few arenas: each thread's own would reserve
 # memory that it never uses, and count against the limit (mallopt(3)).
 ALONE = {"OMP_NUM_THREADS": "1", "OPENBLAS_NUM_THREADS": "1", "MALLOC_ARENA_MAX": "2"}

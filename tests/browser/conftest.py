@@ -9,9 +9,11 @@ from typing import Literal
 import pytest
 from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Request, Route, sync_playwright
 
+from tests.browser.doing import take_picture
 from tests.browser.driving import ARGUMENTS, NOT_THERE, WITHIN_MS, chromium, wait_until
 from tests.browser.pages_list import ShownPage
 from tests.browser.served import Served, served
+from tests.thorough import THOROUGH
 
 __all__ = ["SCHEMES", "SHORTEST_PX", "SIZES", "Watch", "Window", "wait_until"]  # for tests
 SIZES = {"wide": (1280, 900), "phone": (360, 740)}
@@ -121,11 +123,17 @@ def window(open_window: Callable[..., Window]) -> Window:
 
 
 @pytest.fixture(scope="session")
-def pictures() -> Path:
-    """The folder of screenshots, which is not kept with the program."""
+def take_pictures() -> Callable[[Page, str], None]:
+    """Takes pictures of a page in both colour schemes, in the thorough run alone: people look at them, no test does."""
     folder = Path(__file__).parent / "screenshots"
-    folder.mkdir(exist_ok=True)
-    return folder
+
+    def pictures_of(page: Page, name: str) -> None:
+        folder.mkdir(exist_ok=True)
+        for scheme in SCHEMES:
+            page.emulate_media(color_scheme=scheme)
+            take_picture(page, folder / f"{name}-{scheme}.png")
+
+    return pictures_of if THOROUGH else lambda _page, _name: None
 
 
 def _keep_inside(route: Route, request: Request, url: str, watch: Watch) -> None:

@@ -51,13 +51,15 @@ def widest(page: Page) -> Any:
 def take_picture(page: Page, path: Path) -> None:
     """A picture of the page, or of its beginning where it is very tall.
 
-    In a window as tall as the picture: one past the window's edge makes the browser paint all of a page.
+    In a window as tall as the picture: one past the window's edge makes the browser paint all of a page. The window is
+    as it was afterwards.
     """
     size = page.viewport_size
     assert size is not None
     high = page.evaluate("document.documentElement.scrollHeight")
     page.set_viewport_size({"width": size["width"], "height": min(high, TALLEST_PX)})
     page.screenshot(path=path)
+    page.set_viewport_size(size)
     page.set_viewport_size(size)
 
 

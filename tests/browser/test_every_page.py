@@ -4,12 +4,13 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+from playwright.sync_api import Page
 
 from service.app import create_app
 from service.pages.page_views import is_page
 from tests.browser.access import contrast_faults_of, faults_of
 from tests.browser.conftest import SCHEMES, SHORTEST_PX, SIZES, Window
-from tests.browser.doing import take_picture, unfold, widest
+from tests.browser.doing import unfold, widest
 from tests.browser.pages_list import NO_PAGES, PAGES, ShownPage
 from tests.service.conftest import parts_of
 
@@ -28,12 +29,10 @@ def test_every_route_that_gives_a_page_is_in_the_list(tmp_path: Path) -> None:
 
 @every_page
 def test_a_page_breaks_no_rule_of_access_gravely_and_can_be_read_in_its_colours(
-    open_window: Callable[..., Window], shown: ShownPage, pictures: Path
+    open_window: Callable[..., Window], shown: ShownPage, take_pictures: Callable[[Page, str], None]
 ) -> None:
     page = open_window(signed_in=shown.signed_in).show(shown)
-    for scheme in SCHEMES:
-        page.emulate_media(color_scheme=scheme)
-        take_picture(page, pictures / f"{shown.name}-wide-{scheme}.png")
+    take_pictures(page, f"{shown.name}-wide")
 
     unfold(page)
     found = faults_of(page)
@@ -46,12 +45,10 @@ def test_a_page_breaks_no_rule_of_access_gravely_and_can_be_read_in_its_colours(
 
 @every_page
 def test_a_page_on_a_phone_never_scrolls_sideways_whatever_is_unfolded(
-    open_window: Callable[..., Window], shown: ShownPage, pictures: Path
+    open_window: Callable[..., Window], shown: ShownPage, take_pictures: Callable[[Page, str], None]
 ) -> None:
     page = open_window(size="phone", signed_in=shown.signed_in).show(shown)
-    for scheme in SCHEMES:
-        page.emulate_media(color_scheme=scheme)
-        take_picture(page, pictures / f"{shown.name}-phone-{scheme}.png")
+    take_pictures(page, f"{shown.name}-phone")
 
     for fold in ("folded", "unfolded"):
         for width in (SIZES["phone"][0], SHORTEST_PX):

@@ -2,14 +2,13 @@
 
 import json
 from collections.abc import Callable
-from pathlib import Path
 from typing import Any
 
 import pytest
 from playwright.sync_api import Page
 
 from tests.browser.access import faults_of
-from tests.browser.conftest import SCHEMES, SHORTEST_PX, SIZES, Window, wait_until
+from tests.browser.conftest import SHORTEST_PX, SIZES, Window, wait_until
 from tests.service.shop import TUNE
 
 READY = "#new-disc[data-ready]"
@@ -169,12 +168,11 @@ def test_a_ruling_that_the_service_refuses_is_told_where_the_rulings_stand(windo
     assert page.inner_text("#rulings-fault").startswith("Note 49999 is left out: ")
 
 
-@pytest.mark.parametrize("scheme", SCHEMES)
 @pytest.mark.parametrize("size", SIZES)
 def test_with_all_unfolded_with_faults_and_rulings_the_page_breaks_no_rule_of_access_and_never_scrolls_sideways(
-    open_window: Callable[..., Window], size: str, scheme: str, pictures: Path
+    open_window: Callable[..., Window], size: str, take_pictures: Callable[[Page, str], None]
 ) -> None:
-    window = open_window(size=size, scheme=scheme)
+    window = open_window(size=size)
     window.watch.bears.append(REFUSED)
     page = begun(window)
     page.set_input_files("#tune", {"name": "t.mid", "mimeType": "audio/midi", "buffer": TUNE})
@@ -190,7 +188,7 @@ def test_with_all_unfolded_with_faults_and_rulings_the_page_breaks_no_rule_of_ac
     page.click("#send")
     page.wait_for_selector("#discs-fault:not(:empty)")
 
-    page.screenshot(path=pictures / f"new-unfolded-{size}-{scheme}.png", full_page=True)
+    take_pictures(page, f"new-unfolded-{size}")
     assert faults_of(page) == []
     if size == "phone":
         page.set_viewport_size({"width": SHORTEST_PX, "height": 740})

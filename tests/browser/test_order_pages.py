@@ -227,7 +227,7 @@ def test_the_way_from_a_disc_to_its_rulings_ends_in_the_settings(signed_in: Wind
     wait_until(page, "document.querySelector('#replanning').open")
 
 
-def test_the_work_sheet_is_seen_in_the_page(signed_in: Window, pictures: Any) -> None:
+def test_the_work_sheet_is_seen_in_the_page(signed_in: Window, take_pictures: Callable[[Page, str], None]) -> None:
     page = signed_in.open("/orders/{order}")
     images = page.locator("#sheet-1 img")
     assert images.evaluate_all("all => all.filter(one => one.naturalWidth > 0).length") == 0  # not before it is wanted
@@ -239,7 +239,7 @@ def test_the_work_sheet_is_seen_in_the_page(signed_in: Window, pictures: Any) ->
         page, "[...document.querySelectorAll('#sheet-1 img')].every(one => one.complete && one.naturalWidth > 800)"
     )
 
-    page.screenshot(path=pictures / "order-work-sheet.png", full_page=True)
+    take_pictures(page, "order-work-sheet")
 
 
 def test_an_order_is_printed_with_its_story_and_without_its_forms(signed_in: Window) -> None:

@@ -1,7 +1,6 @@
 """Pages in their other states: faults told, something chosen or ruled, a link refused, nothing there yet."""
 
 from collections.abc import Callable
-from pathlib import Path
 
 import pytest
 from playwright.sync_api import Page
@@ -9,7 +8,7 @@ from playwright.sync_api import Page
 from service.client.client import Client
 from tests.browser.access import contrast_faults_of, faults_of
 from tests.browser.conftest import SCHEMES, SHORTEST_PX, Window
-from tests.browser.doing import focused, tab_to_match, take_picture, widest
+from tests.browser.doing import focused, tab_to_match, widest
 from tests.browser.driving import wait_until
 
 READY = "#rulings[data-ready]"
@@ -111,23 +110,23 @@ BORNE = ("the server responded with a status of 4", "net::ERR_FAILED")  # what s
 
 @pytest.mark.parametrize("name", STATES)
 def test_a_page_in_another_state_keeps_the_rules_of_access_and_fits_a_phone(
-    open_window: Callable[..., Window], name: str, pictures: Path
+    open_window: Callable[..., Window], name: str, take_pictures: Callable[[Page, str], None]
 ) -> None:
     come_to, signed_in = STATES[name]
     window = open_window(signed_in=signed_in)
     window.watch.bears += BORNE
     page = come_to(window)
 
+    take_pictures(page, f"{name}-wide")
     faults = faults_of(page)
     for scheme in SCHEMES:
         page.emulate_media(color_scheme=scheme)
-        take_picture(page, pictures / f"{name}-wide-{scheme}.png")
         faults += [f"{scheme}: {fault}" for fault in contrast_faults_of(page)]
     assert faults == []
     page.set_viewport_size({"width": SHORTEST_PX, "height": 740})
     wait_until(page, f"innerWidth === {SHORTEST_PX}")
     assert page.evaluate("document.documentElement.scrollWidth") <= SHORTEST_PX, widest(page)
-    take_picture(page, pictures / f"{name}-phone-{SCHEMES[-1]}.png")
+    take_pictures(page, f"{name}-phone")
 
 
 def test_a_key_that_is_refused_is_told_so_and_can_be_given_again(window: Window) -> None:
