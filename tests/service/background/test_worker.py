@@ -226,7 +226,9 @@ def test_an_order_that_cannot_be_planned_fails_with_the_reason_and_the_next_is_p
     for order_id in (bad_id, good_id):
         send(shop, order_id)
 
-    with at_work(shop, plan_within_s=2, plan_memory_mib=300, most_attempts=2):
+    # Only what goes on for ever is met by the limit of time: filling memory takes a slow machine seconds.
+    within_s = 2 if deed == "spin" else 60
+    with at_work(shop, plan_within_s=within_s, plan_memory_mib=300, most_attempts=2):
         wait_for_state(shop, good_id, State.READY)
 
     bad = look(shop, bad_id)
