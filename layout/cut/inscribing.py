@@ -53,7 +53,7 @@ class Lettered:
     left_out: tuple[Inscription, ...]
 
 
-def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) -> Lettered:
+def lettering(rooms: Rooms, lines: tuple[Inscription, ...]) -> Lettered:
     """Lines of letters, as drawn: they read right on the side that is drawn.
 
     All lines stand together if they fit so and are easily read; if not, as many as do, and the rest
@@ -64,13 +64,12 @@ def lettering(rooms: Rooms, lines: tuple[Inscription, ...], *, rim_mm: float) ->
     Args:
         rooms: Where there is room, as drawn.
         lines: What to write; a line gives way to those before it.
-        rim_mm: The disc's radius.
     """
     written: list[Lettering] = []
     missing: list[Inscription] = []
     left = list(lines)
     while left:
-        placed = _placed(rooms, written, left, rim_mm)
+        placed = _placed(rooms, written, left)
         written += placed
         missing += [] if placed else left[:1]
         left = left[max(len(placed), 1) :]
@@ -92,11 +91,11 @@ class _Search:
     turn_rad: float
 
 
-def _placed(rooms: Rooms, written: list[Lettering], left: list[Inscription], rim_mm: float) -> list[Lettering]:
+def _placed(rooms: Rooms, written: list[Lettering], left: list[Inscription]) -> list[Lettering]:
     """The first of the lines left, with as many as can stand with it; none where there is no room for it."""
     taken = [shapely.MultiPoint(np.concatenate(line.strokes_mm)).convex_hull for line in written]
     for room, blocks in _rooms_and_blocks(rooms, left):
-        found = _first_that_fits(_clear_of(taken, room), blocks, rim_mm)
+        found = _first_that_fits(_clear_of(taken, room), blocks, rooms.metal.rim_mm)
         if found:
             return found
     return []

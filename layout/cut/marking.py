@@ -19,20 +19,21 @@ class Marking:
     Attributes:
         mark: The index mark, seen from the label side; None where it has no room.
         rooms: The room beside it, as drawn.
-        mirror: −1 where drawings show the star side, else +1.
-        rim_mm: The disc's radius.
     """
 
     mark: Outlines | None
     rooms: Rooms
-    mirror: int
-    rim_mm: float
     _lettered: dict[tuple[Inscription, ...], Lettered] = field(default_factory=dict, init=False, repr=False)
+
+    @property
+    def mirror(self) -> int:
+        """−1 where drawings show the star side, else +1."""
+        return self.rooms.mirror
 
     def lettered(self, lines: tuple[Inscription, ...]) -> Lettered:
         """Lines of letters beside the mark: their places are sought once, for layout and drawing alike."""
         if lines not in self._lettered:
-            self._lettered[lines] = lettering(self.rooms, lines, rim_mm=self.rim_mm)
+            self._lettered[lines] = lettering(self.rooms, lines)
         return self._lettered[lines]
 
 
@@ -43,7 +44,7 @@ def marking_of(disc: Disc) -> Marking:
 
 def _marking_of(disc: Disc) -> Marking:
     mirror = -1 if disc.cutter.drawn_from == "star-side" else 1
-    metal, rim_mm = FreeMetal.of(disc), disc.movement.disc.outer_diameter_mm / 2
-    mark = index_mark(metal, rim_mm=rim_mm, direction=disc.turning.direction)
+    metal = FreeMetal.of(disc)
+    mark = index_mark(metal)
     taken = () if mark is None else (shapely.LineString(mark.points_mm[0]),)
-    return Marking(mark=mark, rooms=Rooms(metal=metal, taken=taken, mirror=mirror), mirror=mirror, rim_mm=rim_mm)
+    return Marking(mark=mark, rooms=Rooms(metal=metal, taken=taken, mirror=mirror))

@@ -18,7 +18,7 @@ MARK_LENGTHS_MM = (6.0, 4.0, 3.0, 2.0, 1.5, 1.0)
 STEP_MM = 0.5  # mm; how finely places are tried along a radius
 
 
-def index_mark(metal: FreeMetal, *, rim_mm: float, direction: int) -> Outlines | None:
+def index_mark(metal: FreeMetal) -> Outlines | None:
     """A stroke along the radius at disc angle 0 with one barb, which points the way the disc turns.
 
     A disc drawn from the wrong side shows the barb on the wrong side. The mark stands between the
@@ -27,16 +27,15 @@ def index_mark(metal: FreeMetal, *, rim_mm: float, direction: int) -> Outlines |
 
     Args:
         metal: Where there is room, seen from the label side.
-        rim_mm: The disc's radius.
-        direction: +1 for a disc that turns clockwise seen from the label side, else −1.
 
     Returns:
         The mark seen from the label side; None where there is no room at all.
     """
+    rim_mm, direction = metal.rim_mm, metal.turning.direction
     large_mm = [max(share * 2 * rim_mm, WELL_SEEN_MM) for share in MARK_SHARES]
     small_mm = [length_mm for length_mm in MARK_LENGTHS_MM if length_mm < large_mm[-1]]
     for lengths_mm in (large_mm, small_mm):
-        for room, places_mm in _rooms_and_places(metal, rim_mm):
+        for room, places_mm in _rooms_and_places(metal):
             mark = _mark_in(room, places_mm, lengths_mm, direction)
             if mark is not None:
                 return mark
@@ -44,11 +43,11 @@ def index_mark(metal: FreeMetal, *, rim_mm: float, direction: int) -> Outlines |
     return _mark_in(metal.between, anywhere_mm, large_mm + small_mm, direction)
 
 
-def _rooms_and_places(metal: FreeMetal, rim_mm: float) -> Iterator[tuple[BaseGeometry, FloatArray]]:
+def _rooms_and_places(metal: FreeMetal) -> Iterator[tuple[BaseGeometry, FloatArray]]:
     """Where a mark may stand, the best first, and radii of its middle: outside the tracks, inside, under a clamp."""
     tracks_from_mm, tracks_to_mm = metal.tracks_mm
     inside_mm = np.arange(tracks_from_mm, 0.0, -STEP_MM)
-    yield metal.seen, np.array([(tracks_to_mm + rim_mm) / 2])
+    yield metal.seen, np.array([(tracks_to_mm + metal.rim_mm) / 2])
     yield metal.seen, inside_mm
     yield metal.hidden, inside_mm
 

@@ -127,7 +127,7 @@ def _strokes(entity: Entity) -> Iterator[_Strokes]:
         case Circles():
             start_mm = entity.centres_mm + np.column_stack([entity.radius_mm, np.zeros(len(entity.radius_mm))])
             yield _Strokes(start_mm=start_mm, end_mm=start_mm, length_mm=2 * np.pi * entity.radius_mm)
-        case Lettering():
+        case Lettering() if entity.strokes_mm:
             last = np.cumsum([len(stroke) for stroke in entity.strokes_mm]) - 1
             first = np.concatenate([[0], last[:-1] + 1])
             points_mm = np.concatenate(entity.strokes_mm)
@@ -136,7 +136,7 @@ def _strokes(entity: Entity) -> Iterator[_Strokes]:
             yield _Strokes(
                 start_mm=points_mm[first], end_mm=points_mm[last], length_mm=np.add.reduceat(along_mm, first)
             )
-        case Points():
+        case Lettering() | Points():
             return
 
 

@@ -12,10 +12,8 @@ from shapely.geometry.base import BaseGeometry
 from layout.cut.blank import turned_mm
 from layout.documents.feature import Feature
 from layout.documents.movement import Movement
-from layout.mechanics.arrays import FloatArray, IntArray
-from layout.mechanics.frame import on_disc_mm
+from layout.mechanics.openings import Openings
 from layout.mechanics.projection import Pattern
-from layout.mechanics.spacing import core_geometries
 from layout.mechanics.turning import Turning
 from layout.place.disc import Disc
 
@@ -34,26 +32,23 @@ class FreeMetal:
         movement: The disc's movement.
         pattern: The flat pattern of its projections.
         turning: The movement's turning in numbers.
-        track_index: Shape (n,). The track of each projection.
-        edge_angle_rad: Shape (n,). Its working edge.
+        openings: Of all projections.
     """
 
     movement: Movement
     pattern: Pattern
     turning: Turning
-    track_index: IntArray
-    edge_angle_rad: FloatArray
+    openings: Openings
 
     @staticmethod
     def of(disc: Disc) -> "FreeMetal":
         """The free metal of a disc; it does not hold on to that, which holds on to it."""
-        return FreeMetal(
-            movement=disc.movement,
-            pattern=disc.pattern,
-            turning=disc.turning,
-            track_index=disc.track_index,
-            edge_angle_rad=disc.edge_angle_rad,
-        )
+        return FreeMetal(movement=disc.movement, pattern=disc.pattern, turning=disc.turning, openings=disc.openings)
+
+    @property
+    def rim_mm(self) -> float:
+        """The disc's radius."""
+        return self.movement.disc.outer_diameter_mm / 2
 
     @property
     def tracks_mm(self) -> tuple[float, float]:
@@ -78,23 +73,17 @@ class FreeMetal:
     @cached_property
     def between(self) -> BaseGeometry:
         """Clear of openings only."""
-        return self._left(self._openings)
+        # A buffer's polygon lies inside the round end it stands for; its corners at 1/cos outside cover it.
+        round_mm = self.openings.round_mm / math.cos(math.pi / (4 * _QUARTER_PIECES))
+        grown = shapely.buffer(self.openings.cores, round_mm, quad_segs=_QUARTER_PIECES)
+        return self._left(shapely.union_all(grown))
 
     @cached_property
     def _metal(self) -> BaseGeometry:
         disc = self.movement.disc
         taken = [place for feature in disc.features for place in _taken(feature)]
-        whole = _ring(disc.centre_hole_mm / 2, disc.outer_diameter_mm / 2)
+        whole = _ring(disc.centre_hole_mm / 2, self.rim_mm)
         return whole.difference(shapely.union_all(taken))
-
-    @property
-    def _openings(self) -> BaseGeometry:
-        pattern, radius_mm = self.pattern, self.turning.radius_mm[self.track_index]
-        placed = radius_mm, self.edge_angle_rad, self.turning.direction
-        placed_mm = on_disc_mm(pattern.core_points_mm, *placed, pattern.strike_u_mm)
-        # A buffer's polygon lies inside the round end it stands for; its corners at 1/cos outside cover it.
-        round_mm = pattern.core_round_mm / math.cos(math.pi / (4 * _QUARTER_PIECES))
-        return shapely.union_all(shapely.buffer(core_geometries(placed_mm), round_mm, quad_segs=_QUARTER_PIECES))
 
     def _left(self, *without: BaseGeometry) -> BaseGeometry:
         return self._metal.difference(shapely.union_all(without)).buffer(-CLEAR_MM)

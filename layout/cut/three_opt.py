@@ -11,7 +11,7 @@ import numpy as np
 
 from layout.cut.near_stops import NearStops
 from layout.cut.trip import Trip
-from layout.cut.ways import NOT_NEXT_MM
+from layout.cut.ways import NOT_NEXT_MM, away_mm
 from layout.mechanics.arrays import BoolArray, FloatArray, IntArray
 
 LEAST_GAIN_MM = 1e-6  # mm; a nanometre, the grain of the stops
@@ -42,8 +42,7 @@ class Stops:
 
     def away_mm(self, one: IntArray, other: IntArray) -> FloatArray:
         """How far it is between stops."""
-        dx_mm, dy_mm = self.x_mm[one] - self.x_mm[other], self.y_mm[one] - self.y_mm[other]
-        return np.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)  # rounded the same by every processor, which hypot is not
+        return away_mm(self.x_mm[one] - self.x_mm[other], self.y_mm[one] - self.y_mm[other])
 
     def way_mm(self, one: IntArray, other: IntArray) -> FloatArray:
         """How far it is between stops, and NOT_NEXT_MM more where they must not follow one another."""
@@ -68,7 +67,7 @@ def shorten(trip: Trip, stops: Stops) -> None:
     looked_at = np.arange(len(trip.order))
     while len(looked_at):
         changed = {NONE}
-        for move in _moves(_Ways.of(trip, stops), stops, looked_at):
+        for move in _moves(_Standing.of(trip, stops), stops, looked_at):
             # One not possible any more, for those done before it, is looked for anew.
             changed.update(move if _done(trip, move) else move[:1])
         looked_at = np.array(sorted(changed)[1:], dtype=np.int64)
@@ -82,7 +81,7 @@ def stops_followed_by_what_must_not(trip: Trip, stops: Stops) -> list[int]:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class _Ways:
+class _Standing:
     """A trip as it stands.
 
     Attributes:
@@ -96,14 +95,14 @@ class _Ways:
     way_mm: FloatArray
 
     @staticmethod
-    def of(trip: Trip, stops: Stops) -> "_Ways":
+    def of(trip: Trip, stops: Stops) -> "_Standing":
         order, count = np.array(trip.order), len(trip.order)
         beside, way_mm = np.empty((2, count), dtype=np.int64), np.empty((2, count))
         after = np.roll(order, -1)
         beside[1, order], beside[0, after] = after, order
         along_mm = stops.way_mm(order, after)
         way_mm[1, order], way_mm[0, after] = along_mm, along_mm
-        return _Ways(place=np.array(trip.place), beside=beside, way_mm=way_mm)
+        return _Standing(place=np.array(trip.place), beside=beside, way_mm=way_mm)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -128,16 +127,16 @@ class _Begun:
     is_ring: BoolArray
 
 
-def _moves(ways: _Ways, stops: Stops, looked_at: IntArray) -> list[list[int]]:
+def _moves(trip: _Standing, stops: Stops, looked_at: IntArray) -> list[list[int]]:
     """The best move of each stop, of those that gain anything; the best of all first.
 
     Args:
-        ways: The trip.
+        trip: It.
         stops: What it goes to.
         looked_at: Shape (k,). The stops that moves begin with.
     """
-    begun = _begun(ways, stops, looked_at)
-    found = [_closed(begun, stops), _gone_on(begun, ways, stops)]
+    begun = _begun(trip, stops, looked_at)
+    found = [_closed(begun, stops), _gone_on(begun, trip, stops)]
     gain_mm = np.concatenate([gain for _, gain in found])
     moves = np.concatenate([move for move, _ in found])
     order = np.lexsort((*moves.T[::-1], -gain_mm))
@@ -147,14 +146,14 @@ def _moves(ways: _Ways, stops: Stops, looked_at: IntArray) -> list[list[int]]:
     return best
 
 
-def _begun(ways: _Ways, stops: Stops, looked_at: IntArray) -> _Begun:
+def _begun(trip: _Standing, stops: Stops, looked_at: IntArray) -> _Begun:
     a, along = np.tile(looked_at, 2), np.repeat([1, 0], len(looked_at))
-    b, gain_mm = ways.beside[along, a], ways.way_mm[along, a]
+    b, gain_mm = trip.beside[along, a], trip.way_mm[along, a]
     row, rank = np.nonzero(stops.near.away_mm[b] < gain_mm[:, None])
     a, b, along = a[row], b[row], along[row]
     c, gain_mm = stops.near.other[b, rank], gain_mm[row] - stops.near.away_mm[b, rank]
-    count = len(ways.place)
-    c_at = _steps(ways, b, c, along)
+    count = len(trip.place)
+    c_at = _steps(trip, b, c, along)
     # d is before c, and another stop than b; or beyond c, and another than a, while two ways at least lead to c.
     before, beyond = np.flatnonzero(c_at > 1), np.flatnonzero((c_at > 1) & (c_at < count - 2))
     row = np.concatenate([before, beyond])
@@ -164,17 +163,17 @@ def _begun(ways: _Ways, stops: Stops, looked_at: IntArray) -> _Begun:
         a=a[row],
         b=b[row],
         c=c,
-        d=ways.beside[side, c],
+        d=trip.beside[side, c],
         along=along[row],
         c_at=c_at[row],
-        gain_mm=gain_mm[row] + ways.way_mm[side, c],
+        gain_mm=gain_mm[row] + trip.way_mm[side, c],
         is_ring=np.arange(len(row)) >= len(before),
     )
 
 
-def _steps(ways: _Ways, begin: IntArray, stop: IntArray, along: IntArray) -> IntArray:
+def _steps(trip: _Standing, begin: IntArray, stop: IntArray, along: IntArray) -> IntArray:
     """How many steps stops are from others, along the trip or against it."""
-    return (ways.place[stop] - ways.place[begin]) * (2 * along - 1) % len(ways.place)
+    return (trip.place[stop] - trip.place[begin]) * (2 * along - 1) % len(trip.place)
 
 
 def _closed(begun: _Begun, stops: Stops) -> tuple[IntArray, FloatArray]:
@@ -194,22 +193,22 @@ def _gains(gain_mm: FloatArray, last: IntArray, a: IntArray, stops: Stops) -> tu
     return row[is_gain], with_it_mm[is_gain]
 
 
-def _gone_on(begun: _Begun, ways: _Ways, stops: Stops) -> tuple[IntArray, FloatArray]:
+def _gone_on(begun: _Begun, trip: _Standing, stops: Stops) -> tuple[IntArray, FloatArray]:
     """Moves of six stops that gain, shape (m, 6), and how much."""
     row, rank = np.nonzero(stops.near.away_mm[begun.d] < (begun.gain_mm - LEAST_GAIN_MM)[:, None])
     d = begun.d[row]
     e, gain_mm = stops.near.other[d, rank], begun.gain_mm[row] - stops.near.away_mm[d, rank]
     c_at, along, is_ring = begun.c_at[row], begun.along[row], begun.is_ring[row]
-    e_at = _steps(ways, begun.b[row], e, along)
+    e_at = _steps(trip, begun.b[row], e, along)
     is_inside = e_at < c_at
     # Of a ring either way beside e can go. What is no ring is turned round from b to d: in there f comes before e.
-    back = np.flatnonzero(np.where(is_ring, is_inside & (e_at > 1), (e_at > c_at) & (e_at < len(ways.place) - 1)))
+    back = np.flatnonzero(np.where(is_ring, is_inside & (e_at > 1), (e_at > c_at) & (e_at < len(trip.place) - 1)))
     onward = np.flatnonzero(np.where(is_ring, is_inside, e_at < c_at - 2))
     chosen = np.concatenate([back, onward])
     side = np.concatenate([1 - along[back], along[onward]])
     row, e = row[chosen], e[chosen]
-    a, f = begun.a[row], ways.beside[side, e]
-    gains, gain_mm = _gains(gain_mm[chosen] + ways.way_mm[side, e], f, a, stops)
+    a, f = begun.a[row], trip.beside[side, e]
+    gains, gain_mm = _gains(gain_mm[chosen] + trip.way_mm[side, e], f, a, stops)
     row = row[gains]
     moves = np.column_stack([begun.a[row], begun.b[row], begun.c[row], begun.d[row], e[gains], f[gains]])
     return moves, gain_mm
@@ -217,42 +216,34 @@ def _gone_on(begun: _Begun, ways: _Ways, stops: Stops) -> tuple[IntArray, FloatA
 
 def _done(trip: Trip, move: list[int]) -> bool:
     """Do a move, if all ways that it takes out are still there and run as they did."""
-    a, b, c, d, e, f = move
-    count, place = len(trip.order), trip.place
-    ahead = (place[b] - place[a]) % count
-    if ahead not in (1, count - 1):
+    a, b = move[:2]
+    ahead = trip.steps(a, b)
+    if ahead not in (1, len(trip.order) - 1):
         return False
     turn = 1 if ahead == 1 else -1
-    c_at, d_at = (place[c] - place[b]) * turn % count, (place[d] - place[b]) * turn % count
-    if e == NONE:
-        joins = [(a, b, d, c)] if d_at == c_at - 1 else []
-    else:
-        e_at, f_at = (place[e] - place[b]) * turn % count, (place[f] - place[b]) * turn % count
-        joins = _joins(move, (c_at, d_at), (e_at, f_at))
+    joins = _joins(move, [turn * trip.steps(b, stop) % len(trip.order) for stop in move[2:] if stop != NONE])
     for join in joins:
         trip.join(*join)
     return bool(joins)
 
 
-def _joins(move: list[int], of_c: tuple[int, int], of_e: tuple[int, int]) -> list[tuple[int, int, int, int]]:
-    """What a move of six stops joins; nothing where it is not possible.
+def _joins(move: list[int], places: list[int]) -> list[tuple[int, int, int, int]]:
+    """What a move joins; nothing where it is not possible.
 
     Args:
         move: The stops.
-        of_c: How many steps c and d are from b, away from a.
-        of_e: How many e and f are.
+        places: How many steps c and d, and e and f of a move of six, are from b, away from a.
     """
     a, b, c, d, e, f = move
-    (c_at, d_at), (e_at, f_at) = of_c, of_e
+    c_at, d_at, *others = places
+    if not others:
+        return [(a, b, d, c)] if d_at == c_at - 1 else []
+    e_at, f_at = others
     if d_at == c_at - 1 and ((e_at > c_at and f_at == e_at - 1) or (e_at < d_at and f_at == e_at + 1)):
         return [(a, b, d, c), (a, d, f, e)]
-    if d_at == c_at + 1 and e_at < c_at:
-        if f_at == e_at + 1:
-            return [
-                (a, b, c, d),
-                (a, c, f, e),
-                (c, e, b, d),
-            ]  # the two stretches change places, neither is turned round
-        if f_at == e_at - 1:
-            return [(a, b, f, e), (b, e, c, d)]
+    if d_at == c_at + 1 and e_at < c_at and f_at == e_at - 1:
+        return [(a, b, f, e), (b, e, c, d)]
+    if d_at == c_at + 1 and e_at < c_at and f_at == e_at + 1:
+        # The two stretches change places, neither is turned round.
+        return [(a, b, c, d), (a, c, f, e), (c, e, b, d)]
     return []

@@ -20,6 +20,10 @@ class Trip:
         for place, stop in enumerate(self.order):
             self.place[stop] = place
 
+    def steps(self, begin: int, stop: int) -> int:
+        """How many steps a stop is from another, along the trip."""
+        return (self.place[stop] - self.place[begin]) % len(self.order)
+
     def join(self, a: int, b: int, c: int, d: int) -> None:
         """Turn a–b and c–d into a–c and b–d, where b comes after a and d after c, both one way round."""
         order, place = self.order, self.place

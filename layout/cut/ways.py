@@ -18,6 +18,11 @@ class WaysMm(Protocol):
     def __getitem__(self, other: int, /) -> float: ...
 
 
+def away_mm(dx_mm: FloatArray, dy_mm: FloatArray) -> FloatArray:
+    """How far it is, of the shape of both: rounded the same by every processor, which hypot is not."""
+    return np.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)
+
+
 def ways_mm(
     places_mm: FloatArray, apart: Sequence[set[int]], near_mm: Sequence[list[tuple[int, float]]]
 ) -> Sequence[WaysMm]:
@@ -38,9 +43,7 @@ def ways_mm(
 
 
 def _table_mm(places_mm: FloatArray, apart: Sequence[set[int]]) -> list[list[float]]:
-    dx_mm, dy_mm = (places_mm[:, None] - places_mm).transpose(2, 0, 1)
-    away_mm = np.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)
-    table_mm: list[list[float]] = away_mm.tolist()
+    table_mm: list[list[float]] = away_mm(*(places_mm[:, None] - places_mm).transpose(2, 0, 1)).tolist()
     for row_mm, partners in zip(table_mm, apart, strict=True):
         for other in partners:
             row_mm[other] += NOT_NEXT_MM
@@ -57,6 +60,6 @@ class _Ways(dict[int, float]):
 
     def __missing__(self, other: int) -> float:
         dx_mm, dy_mm = self._x_mm[self._one] - self._x_mm[other], self._y_mm[self._one] - self._y_mm[other]
-        away_mm = math.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)  # rounded the same by every processor, which hypot is not
-        self[other] = away_mm + NOT_NEXT_MM if other in self._apart else away_mm
+        way_mm = math.sqrt(dx_mm * dx_mm + dy_mm * dy_mm)  # as `away_mm` tells it
+        self[other] = way_mm + NOT_NEXT_MM if other in self._apart else way_mm
         return self[other]

@@ -7,7 +7,7 @@ import numpy as np
 from layout.mechanics.arrays import FloatArray, IntArray
 
 HALVINGS = 50  # of an interval under one turn: ends below 1e-14 rad, the grain of a double
-_SECANT_STEPS = 6
+_SECANT_STEPS = 6  # after the two guesses; with fewer, more middles are looked at, and the end is the same
 _BESIDE = 1e-12  # of the unit looked along: so near the crossing both sides are looked at, then only what lies between
 
 

@@ -21,6 +21,7 @@ from layout.mechanics.projection import Pattern
 from layout.mechanics.turning import FULL_TURN_RAD, Turning
 
 MOST_TRACKS_APART = 6  # tracks; openings that reach past six neighbours are a movement no web can be kept on
+_BESIDE = 1.05  # times the angle guessed at first is the second guess: any other near it finds the same end
 _RING_GRAIN_MM = 1e-6  # so much farther apart than a web two rings must be before rounding does not matter
 _SCAN_STEPS = 400  # places tried over the stretch where two openings can pass each other
 
@@ -135,7 +136,9 @@ def _web_angles_rad(turning: Turning, pattern: Pattern, min_web_mm: float) -> Fl
 
     chord_mm = np.minimum(_reach_mm(pattern, 0) + min_web_mm, 2 * radius_mm)
     chord_rad = 2 * np.arcsin(chord_mm / (2 * radius_mm))
-    return least_enough(spare_mm, np.full(len(radius_mm), math.pi), (chord_rad, np.minimum(1.05 * chord_rad, math.pi)))
+    return least_enough(
+        spare_mm, np.full(len(radius_mm), math.pi), (chord_rad, np.minimum(_BESIDE * chord_rad, math.pi))
+    )
 
 
 def _too_near_pairs(turning: Turning, pattern: Pattern, min_web_mm: float) -> tuple[TooNear, ...]:

@@ -60,7 +60,6 @@ def take_picture(page: Page, path: Path) -> None:
     page.set_viewport_size({"width": size["width"], "height": min(high, TALLEST_PX)})
     page.screenshot(path=path)
     page.set_viewport_size(size)
-    page.set_viewport_size(size)
 
 
 def drop(page: Page, tune: bytes, *names: str, at: str = "#drop") -> None:
