@@ -58,6 +58,7 @@ def take_picture(page: Page, path: Path) -> None:
     assert size is not None
     high = page.evaluate("document.documentElement.scrollHeight")
     page.set_viewport_size({"width": size["width"], "height": min(high, TALLEST_PX)})
+    page.evaluate("scrollTo(0, 0)")
     page.screenshot(path=path)
     page.set_viewport_size(size)
 
